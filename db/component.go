@@ -1,0 +1,148 @@
+package db
+
+import (
+	"context"
+	"encoding/json"
+	"fmt"
+	"maps"
+	"slices"
+	"time"
+)
+
+// Held returns the path under which content with this digest was first read;
+// ok is false where it is not held.
+func (s *Store) Held(ctx context.Context, sha256 string) (path string, ok bool, err error) {
+	return held(ctx, s.read, sha256)
+}
+
+// Held is Store.Held as this transaction sees it.
+func (t *Tx) Held(ctx context.Context, sha256 string) (path string, ok bool, err error) {
+	return held(ctx, t.tx, sha256)
+}
+
+func held(ctx context.Context, q queryer, sha256 string) (string, bool, error) {
+	rows, err := q.QueryContext(ctx, `SELECT path FROM source_file WHERE sha256 = ?`, sha256)
+	if err != nil {
+		return "", false, fmt.Errorf("look up digest: %w", err)
+	}
+	paths, err := collect(rows, func(p *string) []any { return []any{p} })
+	if err != nil || len(paths) == 0 {
+		return "", false, err
+	}
+	return paths[0], true, nil
+}
+
+// AddComponent stores a component, its samples (from EncodeSamples) and what
+// was computed of them.
+func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data []byte, digest string, generation int64, computed Spectra) error {
+	warnings, err := json.Marshal(append([]string{}, c.Warnings...))
+	if err != nil {
+		return err
+	}
+	id, err := t.insert(ctx, `INSERT INTO component (record_id, role, axis, label, rank, azimuth_deg, channel, step_s, samples, unit, processing,
+			low_cut_hz, high_cut_hz, header_peak_m_s2, warnings, source_id, source_line)
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
+		recordID, c.Role, c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.Channel, c.StepS, c.Samples, c.Unit, c.Processing,
+		c.LowCutHz, c.HighCutHz, c.HeaderPeak, string(warnings), c.SourceID, c.SourceLine)
+	if err != nil {
+		return fmt.Errorf("store component: %w", err)
+	}
+	if err := t.exec(ctx, `INSERT INTO series (component_id, sha256, data) VALUES (?, ?, ?)`, id, digest, data); err != nil {
+		return fmt.Errorf("store samples: %w", err)
+	}
+	return t.addSpectra(ctx, recordID, c.Role, generation, computed)
+}
+
+func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, generation int64, computed Spectra) error {
+	var text []byte
+	for i, sd := range computed.SD {
+		text = encodeOrdinates(text[:0], sd)
+		err := t.exec(ctx, `INSERT INTO spectrum (generation_id, damping_position, role, record_id, sd_m) VALUES (?, ?, ?, ?, ?)`,
+			generation, i, role, recordID, text)
+		if err != nil {
+			return fmt.Errorf("store spectrum: %w", err)
+		}
+	}
+	for _, name := range slices.Sorted(maps.Keys(computed.Measures)) {
+		err := t.exec(ctx, `INSERT INTO measure (generation_id, record_id, role, name, value) VALUES (?, ?, ?, ?, ?)`,
+			generation, recordID, role, name, computed.Measures[name])
+		if err != nil {
+			return fmt.Errorf("store measure %s: %w", name, err)
+		}
+	}
+	return nil
+}
+
+// StoredRecord is a record's identity in the store with its components in the
+// order in which they were stored.
+type StoredRecord struct {
+	ID         int64
+	Start      time.Time
+	Components []Component
+}
+
+// FindRecord returns the record with this code; ok is false where there is
+// none.
+func (t *Tx) FindRecord(ctx context.Context, code string) (r StoredRecord, ok bool, err error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT id, coalesce(start_at, '') FROM record WHERE code = ?`, code)
+	if err != nil {
+		return r, false, fmt.Errorf("find record: %w", err)
+	}
+	type row struct {
+		id    int64
+		start string
+	}
+	found, err := collect(rows, func(v *row) []any { return []any{&v.id, &v.start} })
+	if err != nil || len(found) == 0 {
+		return r, false, err
+	}
+	r.ID = found[0].id
+	if r.Start, err = parseTime(found[0].start); err != nil {
+		return r, false, err
+	}
+	r.Components, err = t.components(ctx, r.ID)
+	return r, true, err
+}
+
+func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT c.role, c.axis, c.label, c.rank, c.azimuth_deg, c.channel, c.step_s, c.samples, s.path, s.sha256, s.format
+		FROM component c JOIN source_file s ON s.id = c.source_id WHERE c.record_id = ? ORDER BY c.id`, recordID)
+	if err != nil {
+		return nil, fmt.Errorf("read components: %w", err)
+	}
+	return collect(rows, func(c *Component) []any {
+		return []any{&c.Role, &c.Axis, &c.Label, &c.Rank, &c.AzimuthDeg, &c.Channel, &c.StepS, &c.Samples, &c.SourcePath, &c.SourceSHA256, &c.SourceFormat}
+	})
+}
+
+// SetOrientation replaces a component's axis, label, rank and azimuth by those
+// of c.
+func (t *Tx) SetOrientation(ctx context.Context, componentID int64, c Component) error {
+	err := t.exec(ctx, `UPDATE component SET axis = ?, label = ?, rank = ?, azimuth_deg = ? WHERE id = ?`, c.Axis, c.Label, c.Rank, c.AzimuthDeg, componentID)
+	if err != nil {
+		return fmt.Errorf("store orientation: %w", err)
+	}
+	return nil
+}
+
+// SetRoles renames roles of a record's components, with their spectra and
+// measures: what has a key's role gets the value's. Roles may change places.
+func (t *Tx) SetRoles(ctx context.Context, recordID int64, renamed map[string]string) error {
+	// Two steps through names that nothing else has, since roles are unique in a
+	// record at every moment.
+	const between = "was "
+	for _, table := range []string{"component", "spectrum", "measure"} {
+		query := `UPDATE ` + table + ` SET role = ? WHERE record_id = ? AND role = ?`
+		for old := range renamed {
+			if err := t.exec(ctx, query, between+old, recordID, old); err != nil {
+				return fmt.Errorf("rename role: %w", err)
+			}
+		}
+		for old, role := range renamed {
+			if err := t.exec(ctx, query, role, recordID, between+old); err != nil {
+				return fmt.Errorf("rename role: %w", err)
+			}
+		}
+	}
+	return nil
+}

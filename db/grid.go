@@ -1,0 +1,128 @@
+package db
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"errors"
+	"fmt"
+	"math"
+	"slices"
+	"strconv"
+)
+
+// ErrOtherGeneration says that the store was computed on another grid, recipe
+// or solver than the one asked for.
+var ErrOtherGeneration = errors.New("store was computed otherwise")
+
+// IsZero reports whether the grid is empty.
+func (g Grid) IsZero() bool { return len(g.PeriodsS) == 0 && len(g.Dampings) == 0 }
+
+// Equal reports whether both grids hold the same values in the same order.
+func (g Grid) Equal(other Grid) bool {
+	return slices.Equal(g.PeriodsS, other.PeriodsS) && slices.Equal(g.Dampings, other.Dampings)
+}
+
+// Hash identifies the grid: the SHA-256 of its values in shortest decimals.
+func (g Grid) Hash() string {
+	var text []byte
+	for _, list := range [][]float64{g.PeriodsS, g.Dampings} {
+		for _, x := range list {
+			text = append(strconv.AppendFloat(text, x, 'g', -1, 64), ' ')
+		}
+		text = append(text, '\n')
+	}
+	sum := sha256.Sum256(text)
+	return hex.EncodeToString(sum[:])
+}
+
+// Recipe is a declared list of conditioning steps.
+type Recipe struct {
+	Name  string
+	Steps string // canonical JSON
+}
+
+func (r Recipe) hash() string {
+	sum := sha256.Sum256([]byte(r.Steps))
+	return hex.EncodeToString(sum[:])
+}
+
+// Published returns the published generation; ok is false in an empty store.
+func (t *Tx) Published(ctx context.Context) (g Generation, ok bool, err error) {
+	return published(ctx, t.tx)
+}
+
+// CreateGeneration makes and publishes the store's first generation.
+func (t *Tx) CreateGeneration(ctx context.Context, recipe Recipe, grid Grid, solver string) (Generation, error) {
+	recipeID, err := t.insert(ctx, `INSERT INTO recipe (hash, name, steps) VALUES (?, ?, ?)`, recipe.hash(), recipe.Name, recipe.Steps)
+	if err != nil {
+		return Generation{}, fmt.Errorf("create recipe: %w", err)
+	}
+	gridID, err := t.createGrid(ctx, grid)
+	if err != nil {
+		return Generation{}, fmt.Errorf("create grid: %w", err)
+	}
+	id, err := t.insert(ctx, `INSERT INTO generation (recipe_id, grid_id, solver, state) VALUES (?, ?, ?, 'published')`, recipeID, gridID, solver)
+	if err != nil {
+		return Generation{}, fmt.Errorf("create generation: %w", err)
+	}
+	return Generation{ID: id, Recipe: recipe.Name, Solver: solver, Grid: grid}, nil
+}
+
+func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
+	id, err := t.insert(ctx, `INSERT INTO grid (hash) VALUES (?)`, grid.Hash())
+	if err != nil {
+		return 0, err
+	}
+	for i, period := range grid.PeriodsS {
+		err := t.exec(ctx, `INSERT INTO grid_period (grid_id, position, period_s, omega_rad_s) VALUES (?, ?, ?, ?)`, id, i, period, 2*math.Pi/period)
+		if err != nil {
+			return 0, err
+		}
+	}
+	for i, damping := range grid.Dampings {
+		err := t.exec(ctx, `INSERT INTO grid_damping (grid_id, position, damping) VALUES (?, ?, ?)`, id, i, damping)
+		if err != nil {
+			return 0, err
+		}
+	}
+	return id, nil
+}
+
+func published(ctx context.Context, q queryer) (g Generation, ok bool, err error) {
+	rows, err := q.QueryContext(ctx, `SELECT g.id, r.name, g.solver, g.grid_id
+		FROM generation g JOIN recipe r ON r.id = g.recipe_id WHERE g.state = 'published'`)
+	if err != nil {
+		return g, false, err
+	}
+	type row struct {
+		Generation
+		gridID int64
+	}
+	found, err := collect(rows, func(v *row) []any { return []any{&v.ID, &v.Recipe, &v.Solver, &v.gridID} })
+	if err != nil || len(found) == 0 {
+		return g, false, err
+	}
+	g = found[0].Generation
+	g.Grid, err = readGrid(ctx, q, found[0].gridID)
+	return g, true, err
+}
+
+func readGrid(ctx context.Context, q queryer, id int64) (Grid, error) {
+	var g Grid
+	var err error
+	g.PeriodsS, err = readFloats(ctx, q, `SELECT period_s FROM grid_period WHERE grid_id = ? ORDER BY position`, id)
+	if err != nil {
+		return g, err
+	}
+	g.Dampings, err = readFloats(ctx, q, `SELECT damping FROM grid_damping WHERE grid_id = ? ORDER BY position`, id)
+	return g, err
+}
+
+func readFloats(ctx context.Context, q queryer, query string, args ...any) ([]float64, error) {
+	rows, err := q.QueryContext(ctx, query, args...)
+	if err != nil {
+		return nil, err
+	}
+	return collect(rows, func(x *float64) []any { return []any{x} })
+}

@@ -1,0 +1,139 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+	"io/fs"
+	"net/url"
+	"os"
+	"path/filepath"
+	"strings"
+
+	_ "modernc.org/sqlite" // the driver, by its side effect
+)
+
+// busyTimeoutMS is how long a connection waits for another process's write
+// transaction. Batches take well under a second; half a minute rides out a
+// slow disk.
+const busyTimeoutMS = 30000
+
+// Store is an open store. It is safe for concurrent use; writes are one at a
+// time.
+type Store struct {
+	path  string
+	write *sql.DB // nil in a store opened for reading
+	read  *sql.DB
+}
+
+// Create opens the store at path for reading and writing, makes it where there
+// is none, and applies the migrations that it lacks.
+func Create(ctx context.Context, path string) (*Store, error) {
+	s, err := openWriter(ctx, path)
+	if err != nil {
+		return nil, fmt.Errorf("open store %s: %w", path, err)
+	}
+	return s, nil
+}
+
+// Open opens the store at path for reading. A store that lacks migrations is
+// brought up to date first. The error is ErrNoStore where there is no file and
+// ErrNewer where a newer program wrote it.
+func Open(ctx context.Context, path string) (*Store, error) {
+	s, err := openReader(ctx, path)
+	if err != nil {
+		return nil, fmt.Errorf("open store %s: %w", path, err)
+	}
+	return s, nil
+}
+
+// Close releases the store.
+func (s *Store) Close() error {
+	var errWrite error
+	if s.write != nil {
+		errWrite = s.write.Close()
+	}
+	return errors.Join(errWrite, s.read.Close())
+}
+
+// Path returns the path under which the store was opened.
+func (s *Store) Path() string { return s.path }
+
+func openWriter(ctx context.Context, path string) (*Store, error) {
+	write, err := sql.Open("sqlite", dsn(path, "rwc", "_txlock=immediate"))
+	if err != nil {
+		return nil, err
+	}
+	write.SetMaxOpenConns(1)
+	if err := prepareWriter(ctx, write); err != nil {
+		return nil, errors.Join(explain(err), write.Close())
+	}
+	read, err := openPool(path)
+	if err != nil {
+		return nil, errors.Join(err, write.Close())
+	}
+	return &Store{path: path, write: write, read: read}, nil
+}
+
+func prepareWriter(ctx context.Context, write *sql.DB) error {
+	var mode string
+	if err := write.QueryRowContext(ctx, "PRAGMA journal_mode").Scan(&mode); err != nil {
+		return err
+	}
+	if !strings.EqualFold(mode, "wal") {
+		return fmt.Errorf("write-ahead log refused: the journal mode is %q; is the folder on a file system without shared memory?", mode)
+	}
+	return migrate(ctx, write)
+}
+
+func openReader(ctx context.Context, path string) (*Store, error) {
+	if _, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) {
+		return nil, ErrNoStore
+	}
+	read, err := openPool(path)
+	if err != nil {
+		return nil, err
+	}
+	current, err := isCurrent(ctx, read)
+	if err != nil {
+		return nil, errors.Join(explain(err), read.Close())
+	}
+	if current {
+		return &Store{path: path, read: read}, nil
+	}
+	if err := read.Close(); err != nil {
+		return nil, err
+	}
+	return openWriter(ctx, path)
+}
+
+func openPool(path string) (*sql.DB, error) {
+	return sql.Open("sqlite", dsn(path, "rw", "_pragma=query_only(1)"))
+}
+
+// dsn is a file: URI, since a plain path would drop the mode without a word.
+// Every pragma stands in it, so that each connection of a pool has them.
+// synchronous NORMAL with a write-ahead log keeps the file consistent through
+// a power cut and can lose the last batches only whole.
+func dsn(path, mode string, more string) string {
+	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)&_pragma=journal_mode(wal)"+
+		"&_pragma=synchronous(normal)&_pragma=cache_size(-32768)", busyTimeoutMS)
+	u := url.URL{Scheme: "file", Opaque: url.PathEscape(filepath.ToSlash(path))}
+	return u.String() + "?mode=" + mode + "&" + pragmas + "&" + more
+}
+
+// explain turns the driver's words for the two mistakes people make into ours.
+func explain(err error) error {
+	if err == nil {
+		return nil
+	}
+	text := err.Error()
+	switch {
+	case strings.Contains(text, "file is not a database"):
+		return fmt.Errorf("the file is not a swaybook store: %w", err)
+	case strings.Contains(text, "unable to open database file"):
+		return fmt.Errorf("the file or its folder cannot be opened: %w", err)
+	}
+	return err
+}

@@ -1,0 +1,404 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+	"math"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+	"testing/fstest"
+	"time"
+)
+
+// testGrid has values whose shortest decimals are known.
+var testGrid = Grid{PeriodsS: []float64{0.1, 0.5, 1}, Dampings: []float64{0, 0.05}}
+
+func number(x float64) *float64 { return &x }
+
+func newStore(t *testing.T) *Store {
+	t.Helper()
+	s, err := Create(t.Context(), filepath.Join(t.TempDir(), "with space & sign?.db"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() {
+		if err := s.Close(); err != nil {
+			t.Error(err)
+		}
+	})
+	return s
+}
+
+func update(t *testing.T, s *Store, f func(ctx context.Context, tx *Tx) error) {
+	t.Helper()
+	if err := s.Update(t.Context(), func(tx *Tx) error { return f(t.Context(), tx) }); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// add stores an invented component whose SD at damping d and period p is
+// base + 10·d + p.
+func add(ctx context.Context, tx *Tx, g Generation, code, role string, base float64) error {
+	recordID, err := tx.PutRecord(ctx, Record{
+		Code: code, Siting: "free-field", Start: time.Date(2026, 3, 12, 10, 15, 0, 0, time.UTC), DistanceKM: number(12.5),
+		Event:   &Event{Code: "EV1", Name: "Invented", Magnitude: number(6.1)},
+		Station: &Station{Network: "XX", Code: "ST1", Vs30MPS: number(420)},
+	}, false)
+	if err != nil {
+		return err
+	}
+	src, err := tx.AddSource(ctx, Source{Path: code + role, SHA256: code + role, Format: "invented", Modified: time.Now()}, 1)
+	if err != nil {
+		return err
+	}
+	samples := motion(100, 4, 1)
+	data, digest := EncodeSamples(samples, 1)
+	computed := Spectra{Measures: map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}}
+	for d := range g.Grid.Dampings {
+		var sd []float64
+		for p := range g.Grid.PeriodsS {
+			sd = append(sd, base+float64(10*d+p))
+		}
+		computed.SD = append(computed.SD, sd)
+	}
+	c := Component{Role: role, Axis: "horizontal", Label: role, StepS: 0.01, Samples: len(samples), Unit: "m/s2", Processing: "corrected",
+		AzimuthDeg: number(30), SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
+	return tx.AddComponent(ctx, recordID, c, data, digest, g.ID, computed)
+}
+
+func filledStore(t *testing.T) (*Store, Generation) {
+	t.Helper()
+	s := newStore(t)
+	var g Generation
+	update(t, s, func(ctx context.Context, tx *Tx) (err error) {
+		if _, err = tx.StartRun(ctx, "ingest", "test", time.Now()); err != nil {
+			return err
+		}
+		g, err = tx.CreateGeneration(ctx, Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, "solver 1")
+		return err
+	})
+	return s, g
+}
+
+func TestEveryConnectionHasThePragmas(t *testing.T) {
+	s := newStore(t)
+	want := map[string]string{"journal_mode": "wal", "foreign_keys": "1", "synchronous": "1", "busy_timeout": fmt.Sprint(busyTimeoutMS)}
+	for name, handle := range map[string]*sql.DB{"write": s.write, "read": s.read} {
+		// Two connections at once, so that the second is not the first again.
+		for range 2 {
+			conn, err := handle.Conn(t.Context())
+			if err != nil {
+				t.Fatal(err)
+			}
+			for pragma, value := range want {
+				var got string
+				if err := conn.QueryRowContext(t.Context(), "PRAGMA "+pragma).Scan(&got); err != nil {
+					t.Fatal(err)
+				}
+				if got != value {
+					t.Errorf("%s: %s = %s, want %s", name, pragma, got, value)
+				}
+			}
+			if name == "write" {
+				conn.Close()
+				break
+			}
+			defer conn.Close()
+		}
+	}
+	if _, err := s.read.ExecContext(t.Context(), `DELETE FROM event`); err == nil {
+		t.Error("the read pool writes")
+	}
+}
+
+func TestOpenRefuses(t *testing.T) {
+	dir := t.TempDir()
+	if _, err := Open(t.Context(), filepath.Join(dir, "none.db")); !errors.Is(err, ErrNoStore) {
+		t.Errorf("missing store: %v, want ErrNoStore", err)
+	}
+	junk := filepath.Join(dir, "junk.db")
+	if err := os.WriteFile(junk, []byte(strings.Repeat("not a database ", 100)), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	for name, open := range map[string]func(context.Context, string) (*Store, error){"Open": Open, "Create": Create} {
+		if _, err := open(t.Context(), junk); err == nil || !strings.Contains(err.Error(), "not a swaybook store") {
+			t.Errorf("%s of junk: %v", name, err)
+		}
+	}
+	foreign := filepath.Join(dir, "foreign.db")
+	raw := must(sql.Open("sqlite", foreign))
+	if _, err := raw.Exec(`CREATE TABLE song (id INTEGER)`); err != nil {
+		t.Fatal(err)
+	}
+	raw.Close()
+	if _, err := Create(t.Context(), foreign); err == nil || !strings.Contains(err.Error(), "another program") {
+		t.Errorf("foreign database: %v", err)
+	}
+	if _, err := Create(t.Context(), filepath.Join(dir, "no", "such", "folder.db")); err == nil {
+		t.Error("no error for a missing folder")
+	}
+}
+
+func TestOpenRefusesANewerOrEditedStore(t *testing.T) {
+	tests := []struct {
+		name, change string
+		want         error
+	}{
+		{"newer", `INSERT INTO schema_step VALUES (99999, '99999_future.sql', 'x')`, ErrNewer},
+		{"edited", `UPDATE schema_step SET sha256 = 'other' WHERE number = 1`, ErrEdited},
+	}
+	for _, tt := range tests {
+		t.Run(tt.name, func(t *testing.T) {
+			path := filepath.Join(t.TempDir(), "s.db")
+			s := must(Create(t.Context(), path))
+			if _, err := s.write.Exec(tt.change); err != nil {
+				t.Fatal(err)
+			}
+			s.Close()
+			if _, err := Open(t.Context(), path); !errors.Is(err, tt.want) {
+				t.Errorf("Open: %v, want %v", err, tt.want)
+			}
+			if _, err := Create(t.Context(), path); !errors.Is(err, tt.want) {
+				t.Errorf("Create: %v, want %v", err, tt.want)
+			}
+		})
+	}
+}
+
+func TestMigrationsAreNumberedInOrder(t *testing.T) {
+	if _, err := steps(); err != nil {
+		t.Error(err)
+	}
+	if _, err := readSteps(fstest.MapFS{"00001_a.sql": {}, "00003_c.sql": {}}); err == nil {
+		t.Error("no error for a gap")
+	}
+}
+
+// A reader that meets an unfinished store brings it up to date.
+func TestOpenMigrates(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "empty.db")
+	if err := os.WriteFile(path, nil, 0o644); err != nil {
+		t.Fatal(err)
+	}
+	s, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer s.Close()
+	if err := s.View(t.Context(), func(*Snapshot) error { return nil }); !errors.Is(err, ErrEmpty) {
+		t.Errorf("View = %v, want ErrEmpty", err)
+	}
+}
+
+func TestUpdateIsWholeOrNothing(t *testing.T) {
+	s, g := filledStore(t)
+	stop := errors.New("stop")
+	err := s.Update(t.Context(), func(tx *Tx) error {
+		if err := add(t.Context(), tx, g, "R1", RoleH1, 1); err != nil {
+			return err
+		}
+		return stop
+	})
+	if !errors.Is(err, stop) {
+		t.Fatalf("Update = %v", err)
+	}
+	err = s.View(t.Context(), func(v *Snapshot) error {
+		cs, err := v.Components(t.Context())
+		if len(cs) != 0 {
+			t.Errorf("%d components after a failed update", len(cs))
+		}
+		return err
+	})
+	if err != nil {
+		t.Error(err)
+	}
+}
+
+func TestComponentsAndSpectraComeBack(t *testing.T) {
+	s, g := filledStore(t)
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		return errors.Join(add(ctx, tx, g, "R2", RoleH1, 2), add(ctx, tx, g, "R1", RoleH2, 1), add(ctx, tx, g, "R1", RoleH1, 0.5))
+	})
+	err := s.View(t.Context(), func(v *Snapshot) error {
+		if !v.Generation.Grid.Equal(testGrid) || v.Generation.Solver != "solver 1" {
+			t.Errorf("generation = %+v", v.Generation)
+		}
+		cs, err := v.Components(t.Context())
+		if err != nil {
+			return err
+		}
+		var order []string
+		for _, c := range cs {
+			order = append(order, c.Record.Code+c.Role)
+		}
+		if got := strings.Join(order, " "); got != "R1h1 R1h2 R2h1" {
+			t.Errorf("order = %s", got)
+		}
+		c := cs[0]
+		if *c.Record.Event.Magnitude != 6.1 || *c.Record.Station.Vs30MPS != 420 || *c.Record.DistanceKM != 12.5 || c.PGA != 0.5 || c.PGD != 1.5 {
+			t.Errorf("component = %+v", c)
+		}
+		if samples, err := v.Samples(t.Context(), c.ID); err != nil || len(samples) != 100 {
+			t.Errorf("samples: %d, %v", len(samples), err)
+		}
+		wanted := map[SpectrumKey]bool{{cs[1].RecordID, RoleH2}: true}
+		return v.Spectra(t.Context(), 1, wanted, func(key SpectrumKey, sd []float64) error {
+			if !wanted[key] || sd[0] != 11 || sd[2] != 13 {
+				t.Errorf("%v: sd = %v", key, sd)
+			}
+			delete(wanted, key)
+			return nil
+		})
+	})
+	if err != nil {
+		t.Error(err)
+	}
+}
+
+// The view serves any SQLite client: one row an ordinate, PSV = ω·SD and
+// PSA = ω²·SD/g.
+func TestOrdinateView(t *testing.T) {
+	s, g := filledStore(t)
+	update(t, s, func(ctx context.Context, tx *Tx) error { return add(ctx, tx, g, "R1", RoleH1, 0.25) })
+	rows, err := s.read.QueryContext(t.Context(), `SELECT record, component, damping, period_s, sd_m, psv_m_s, psa_g FROM ordinate
+		WHERE damping = 0.05 AND period_s BETWEEN 0.4 AND 1.5 ORDER BY period_s`)
+	if err != nil {
+		t.Fatal(err)
+	}
+	type ordinate struct {
+		record, component             string
+		damping, period, sd, psv, psa float64
+	}
+	got, err := collect(rows, func(o *ordinate) []any {
+		return []any{&o.record, &o.component, &o.damping, &o.period, &o.sd, &o.psv, &o.psa}
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(got) != 2 {
+		t.Fatalf("%d rows, want 2", len(got))
+	}
+	for i, period := range []float64{0.5, 1} {
+		omega := 2 * math.Pi / period
+		sd := 0.25 + 10 + float64(i+1)
+		want := ordinate{"R1", RoleH1, 0.05, period, sd, sd * omega, sd * omega * omega / 9.80665}
+		if got[i] != want {
+			t.Errorf("row %d = %+v, want %+v", i, got[i], want)
+		}
+	}
+}
+
+func TestRolesChangePlaces(t *testing.T) {
+	s, g := filledStore(t)
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		if err := errors.Join(add(ctx, tx, g, "R1", RoleH1, 1), add(ctx, tx, g, "R1", RoleH2, 2)); err != nil {
+			return err
+		}
+		r, ok, err := tx.FindRecord(ctx, "R1")
+		if err != nil || !ok {
+			t.Fatalf("FindRecord = %v, %v", ok, err)
+		}
+		return tx.SetRoles(ctx, r.ID, map[string]string{RoleH1: RoleH2, RoleH2: RoleH1})
+	})
+	err := s.View(t.Context(), func(v *Snapshot) error {
+		cs, err := v.Components(t.Context())
+		if err != nil {
+			return err
+		}
+		if cs[0].Role != RoleH1 || cs[0].PGA != 2 || cs[0].Label != RoleH2 {
+			t.Errorf("first component = %+v", cs[0])
+		}
+		wanted := map[SpectrumKey]bool{{cs[0].RecordID, RoleH1}: true}
+		return v.Spectra(t.Context(), 0, wanted, func(_ SpectrumKey, sd []float64) error {
+			if sd[0] != 2 {
+				t.Errorf("sd = %v", sd)
+			}
+			return nil
+		})
+	})
+	if err != nil {
+		t.Error(err)
+	}
+}
+
+func TestMetadataIsFilledInOrOverridden(t *testing.T) {
+	s, _ := filledStore(t)
+	first := Record{Code: "R", Siting: "unknown", Event: &Event{Code: "E", Magnitude: number(5)}}
+	more := Record{Code: "R", Siting: "ground", DistanceKM: number(9), Event: &Event{Code: "E", Magnitude: number(6), DepthKM: number(8)}}
+	read := func() (siting string, magnitude, depth float64) {
+		t.Helper()
+		err := s.read.QueryRowContext(t.Context(), `SELECT siting, magnitude, depth_km FROM record r JOIN event e ON e.id = r.event_id`).Scan(&siting, &magnitude, &depth)
+		if err != nil {
+			t.Fatal(err)
+		}
+		return siting, magnitude, depth
+	}
+	put := func(r Record, override bool) {
+		update(t, s, func(ctx context.Context, tx *Tx) error {
+			_, err := tx.PutRecord(ctx, r, override)
+			return err
+		})
+	}
+	put(first, false)
+	put(more, false)
+	if siting, m, d := read(); siting != "ground" || m != 5 || d != 8 {
+		t.Errorf("filled in: %s %v %v", siting, m, d)
+	}
+	put(more, true)
+	if _, m, _ := read(); m != 6 {
+		t.Errorf("overridden: magnitude %v", m)
+	}
+	put(Record{Code: "R", Siting: "unknown", Event: &Event{Code: "E"}}, true)
+	if siting, m, d := read(); siting != "ground" || m != 6 || d != 8 {
+		t.Errorf("an override with nothing stated: %s %v %v", siting, m, d)
+	}
+}
+
+func TestRejectionsAreKeptAndForgotten(t *testing.T) {
+	s, _ := filledStore(t)
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		return errors.Join(
+			tx.Reject(ctx, Rejection{Path: "b", Line: 3, Cause: "truncated", SHA256: "s1"}, 1),
+			tx.Reject(ctx, Rejection{Path: "b", Line: 3, Cause: "truncated", SHA256: "s2"}, 1),
+			tx.Reject(ctx, Rejection{Path: "a", Cause: "unreadable"}, 1))
+	})
+	got, err := s.Rejections(t.Context())
+	if err != nil {
+		t.Fatal(err)
+	}
+	want := []Rejection{{Path: "a", Cause: "unreadable"}, {Path: "b", Line: 3, Cause: "truncated", SHA256: "s2"}}
+	if fmt.Sprint(got) != fmt.Sprint(want) {
+		t.Errorf("rejections = %v, want %v", got, want)
+	}
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		return errors.Join(tx.ForgetRejections(ctx, "b", "s2"), tx.ForgetRejections(ctx, "a", ""))
+	})
+	got, err = s.Rejections(t.Context())
+	if err != nil || len(got) != 1 || got[0].Path != "b" {
+		t.Errorf("rejections = %v, %v", got, err)
+	}
+}
+
+// A snapshot shows one state whatever is committed meanwhile.
+func TestViewIsOneState(t *testing.T) {
+	s, g := filledStore(t)
+	err := s.View(t.Context(), func(v *Snapshot) error {
+		before, err := v.Components(t.Context())
+		if err != nil {
+			return err
+		}
+		update(t, s, func(ctx context.Context, tx *Tx) error { return add(ctx, tx, g, "R1", RoleH1, 1) })
+		after, err := v.Components(t.Context())
+		if len(before) != len(after) {
+			t.Errorf("%d components, then %d in one snapshot", len(before), len(after))
+		}
+		return err
+	})
+	if err != nil {
+		t.Error(err)
+	}
+}

@@ -1,0 +1,122 @@
+package db
+
+import (
+	"errors"
+	"time"
+)
+
+// ErrNoStore says that there is no store at the path.
+var ErrNoStore = errors.New("no such store")
+
+// ErrNewer says that the store was written by a newer program.
+var ErrNewer = errors.New("store is newer than this program")
+
+// Roles that a stored component can have.
+const (
+	RoleH1 = "h1"
+	RoleH2 = "h2"
+	RoleV  = "v"
+)
+
+// Names of the measures stored with every component.
+const (
+	MeasurePGA = "pga_m_s2"
+	MeasurePGV = "pgv_m_s"
+	MeasurePGD = "pgd_m"
+)
+
+// Event is an earthquake. Nil and empty fields are unknown.
+type Event struct {
+	Code          string
+	Name          string
+	Origin        time.Time // UTC
+	LatitudeDeg   *float64
+	LongitudeDeg  *float64
+	DepthKM       *float64
+	Magnitude     *float64
+	MagnitudeType string
+}
+
+// Station is a recording site. Nil and empty fields are unknown.
+type Station struct {
+	Network      string
+	Code         string
+	Name         string
+	LatitudeDeg  *float64
+	LongitudeDeg *float64
+	ElevationM   *float64
+	Vs30MPS      *float64
+}
+
+// Record is one event at one instrument. Event and Station are nil where
+// unknown.
+type Record struct {
+	Code       string
+	Event      *Event
+	Station    *Station
+	Instrument string
+	Siting     string
+	Start      time.Time
+	DistanceKM *float64
+}
+
+// Component is one direction of a record, without its samples.
+type Component struct {
+	Role       string
+	Axis       string // "horizontal", "vertical" or "unknown"
+	Label      string // direction as the file writes it
+	Rank       int    // 1 or 2 where the label ranks a horizontal without azimuth
+	AzimuthDeg *float64
+	Channel    string
+	StepS      float64
+	Samples    int
+	Unit       string // of the file's numbers
+	Processing string
+	LowCutHz   *float64
+	HighCutHz  *float64
+	HeaderPeak *float64 // m/s²
+	Warnings   []string
+	SourceID   int64
+	SourceLine int
+	// Of the source file, for reading only.
+	SourcePath, SourceSHA256, SourceFormat string
+}
+
+// Source is a file whose channels are stored.
+type Source struct {
+	Path     string
+	SHA256   string
+	Size     int64
+	Modified time.Time
+	Format   string
+}
+
+// Rejection is a file, or a channel of it, that could not be stored.
+type Rejection struct {
+	Path   string
+	Line   int // 0 where the cause is not in one line
+	Cause  string
+	SHA256 string // "" where the file could not be read
+}
+
+// Grid is the periods and damping ratios of a generation. A stored spectrum
+// has one value a period.
+type Grid struct {
+	PeriodsS []float64
+	Dampings []float64
+}
+
+// Generation is what was computed under one recipe, grid and solver.
+type Generation struct {
+	ID     int64
+	Recipe string
+	Solver string
+	Grid   Grid
+}
+
+// Spectra is what is computed of one component: SD in m for every damping of
+// the grid (outer) at every period (inner), and the measures by name.
+type Spectra struct {
+	SD       [][]float64
+	Measures map[string]float64
+}
