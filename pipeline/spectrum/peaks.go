@@ -1,0 +1,69 @@
+package spectrum
+
+import "math"
+
+// Peaks returns the peak ground acceleration, velocity and displacement of a
+// component: the greatest |a| in m/s², and the greatest |∫a| in m/s and |∬a| in
+// m of the motion that starts from rest at the first sample, over the record's
+// duration. acceleration is in m/s², stepS apart in s.
+//
+// The acceleration is linear between samples and the integrals of that are
+// exact: the velocity is the trapezoidal sum at samples and quadratic between
+// them, the displacement cubic. Maxima are of continuous time. A record with an
+// offset left in its baseline gets a PGD without meaning; that is a matter of
+// conditioning, not of this function.
+//
+// Fewer than two samples have no duration and give pgv = pgd = 0. NaN in gives
+// NaN out.
+func Peaks(stepS float64, acceleration []float64) (pga, pgv, pgd float64) {
+	var v, u float64 // in units of the step
+	for k, a := range acceleration {
+		pga = max(pga, math.Abs(a))
+		if k+1 == len(acceleration) {
+			break
+		}
+		s := groundStep{u: u, v: v, a: a, slope: acceleration[k+1] - a}
+		pgv = max(pgv, s.peakVelocity())
+		pgd = max(pgd, s.peakDisplacement())
+		u, v = s.displacementAt(1), s.velocityAt(1)
+	}
+	return pga, float64(pgv * stepS), float64(pgd*stepS) * stepS
+}
+
+// groundStep is the motion of the ground within one step, time from 0 to 1.
+type groundStep struct{ u, v, a, slope float64 }
+
+func (s *groundStep) velocityAt(t float64) float64 {
+	return s.v + float64(t*(s.a+float64(t*s.slope*0.5)))
+}
+
+func (s *groundStep) displacementAt(t float64) float64 {
+	return s.u + float64(t*(s.v+float64(t*(float64(s.a*0.5)+float64(t*s.slope/6)))))
+}
+
+// peakVelocity returns the greatest |v|, at the end or where a passes zero; the
+// start was the end of the step before.
+func (s *groundStep) peakVelocity() float64 {
+	peak := math.Abs(s.velocityAt(1))
+	if opposite(s.a, s.a+s.slope) {
+		peak = max(peak, math.Abs(s.velocityAt(-s.a/s.slope)))
+	}
+	return peak
+}
+
+// peakDisplacement returns the greatest |u|, at the end or where v passes zero.
+// The zeros of v + a·t + slope/2·t² are taken in the form that does not cancel.
+func (s *groundStep) peakDisplacement() float64 {
+	peak := math.Abs(s.displacementAt(1))
+	discriminant := float64(s.a*s.a) - float64(2*s.slope*s.v)
+	if !(discriminant >= 0) {
+		return peak
+	}
+	q := -(s.a + math.Copysign(math.Sqrt(discriminant), s.a))
+	for _, t := range [2]float64{q / s.slope, 2 * s.v / q} {
+		if t > 0 && t < 1 {
+			peak = max(peak, math.Abs(s.displacementAt(t)))
+		}
+	}
+	return peak
+}
