@@ -1,0 +1,284 @@
+package ingest
+
+import (
+	"cmp"
+	"fmt"
+	"math"
+	"path"
+	"slices"
+	"strings"
+)
+
+// The ranks of rows, weak first.
+const (
+	rankCode = iota // event or station alone
+	rankPair        // event and station
+	rankGlob        // files by wildcard
+	rankBase        // a file by base name
+	rankPath        // a file by path
+)
+
+func (row *catalogueRow) rank() int {
+	switch {
+	case strings.ContainsAny(row.file, `*?[`):
+		return rankGlob
+	case strings.Contains(row.file, "/"):
+		return rankPath
+	case row.file != "":
+		return rankBase
+	case row.event != "" && row.station != "":
+		return rankPair
+	}
+	return rankCode
+}
+
+// index sorts the rows by precedence, weak first, and builds the tables by
+// which they are found.
+func (c *Catalogue) index() {
+	slices.SortStableFunc(c.rows, func(a, b *catalogueRow) int {
+		return cmp.Or(cmp.Compare(a.rank(), b.rank()), compareBool(a.component != "", b.component != ""), cmp.Compare(a.line, b.line))
+	})
+	c.exact = map[string][]int{}
+	c.joins = map[joinKey][]int{}
+	for i, row := range c.rows {
+		switch row.rank() {
+		case rankGlob:
+			c.globs = append(c.globs, i)
+		case rankBase, rankPath:
+			c.exact[row.file] = append(c.exact[row.file], i)
+		default:
+			key := joinKey{joinName(row.event), joinName(row.station)}
+			c.joins[key] = append(c.joins[key], i)
+		}
+	}
+}
+
+func compareBool(a, b bool) int {
+	switch {
+	case a == b:
+		return 0
+	case b:
+		return -1
+	}
+	return 1
+}
+
+// fileRows returns the rows whose file fits the relative path, weak first.
+func (c *Catalogue) fileRows(rel string) []*catalogueRow {
+	rel = path.Clean(rel)
+	base := path.Base(rel)
+	at := slices.Clone(c.exact[base])
+	if rel != base {
+		at = append(at, c.exact[rel]...)
+	}
+	for _, i := range c.globs {
+		name := base
+		if strings.Contains(c.rows[i].file, "/") {
+			name = rel
+		}
+		if ok, _ := path.Match(c.rows[i].file, name); ok { // the pattern is known to be good
+			at = append(at, i)
+		}
+	}
+	return c.ordered(at)
+}
+
+func (c *Catalogue) ordered(at []int) []*catalogueRow {
+	slices.Sort(at)
+	rows := make([]*catalogueRow, 0, len(at))
+	for _, i := range slices.Compact(at) {
+		rows = append(rows, c.rows[i])
+	}
+	return rows
+}
+
+// Hints returns what the catalogue says of unit and time step of the file at a
+// slash-separated relative path, and base for what it does not say: a row that
+// names a file is more definite than what is said of all files.
+func (c *Catalogue) Hints(rel string, base Hints) Hints {
+	h := base
+	for _, row := range c.fileRows(rel) {
+		if row.component == "" {
+			row.used.Store(true)
+		}
+		if row.unit != "" {
+			h.Unit, h.UnitFrom, h.UnitForAll = row.unit, rowName(row), false
+		}
+		if row.stepS != 0 {
+			h.StepS, h.StepFrom, h.StepForAll = row.stepS, rowName(row), false
+		}
+	}
+	return h
+}
+
+func rowName(row *catalogueRow) string { return fmt.Sprintf("catalogue line %d", row.line) }
+
+// Apply puts what the catalogue says into the channel of the file at a
+// slash-separated relative path and reports whether any row fits. The channel's
+// own direction decides about rows with component; where it has none, and one
+// row with component fits the file, that row gives it.
+//
+// Rows without file join by codes and never change them; but where the header
+// gives the event no ID, the event of a row that joins becomes it. So whatever
+// else the row changes, the event keeps its code and joins again.
+func (c *Catalogue) Apply(rel string, ch *Channel) (matched bool) {
+	files := c.fileRows(rel)
+	giveDirection(files, ch)
+	files = slices.DeleteFunc(files, func(row *catalogueRow) bool { return !row.fits(ch.Orientation) })
+	for _, row := range files {
+		row.setCodes(ch)
+	}
+	joins := c.joinRows(ch)
+	for _, row := range append(joins, files...) {
+		row.used.Store(true)
+		row.apply(ch)
+		matched = true
+	}
+	return matched
+}
+
+// giveDirection gives a channel without direction that of the only row with
+// component.
+func giveDirection(files []*catalogueRow, ch *Channel) {
+	if ch.Orientation.Axis != AxisUnknown {
+		return
+	}
+	var only *catalogueRow
+	for _, row := range files {
+		if row.component == "" {
+			continue
+		}
+		if only != nil {
+			return
+		}
+		only = row
+	}
+	if only != nil {
+		if o, ok := direction(only.component); ok {
+			ch.Orientation = o
+		}
+	}
+}
+
+// fits reports whether the row is not restricted to another direction.
+func (row *catalogueRow) fits(o Orientation) bool {
+	if row.component == "" || strings.EqualFold(row.component, o.Label) {
+		return true
+	}
+	want, ok := direction(row.component)
+	if !ok {
+		return false
+	}
+	label, labelled := direction(o.Label)
+	return want.same(o) || labelled && want.same(label)
+}
+
+// setCodes replaces the channel's codes by those of a row with file.
+func (row *catalogueRow) setCodes(ch *Channel) {
+	ch.Event.ID = orElse(row.event, ch.Event.ID)
+	ch.Station.Code = orElse(row.station, ch.Station.Code)
+	ch.Station.Network = orElse(row.network, ch.Station.Network)
+}
+
+// joinRows returns the rows without file that fit the channel's codes, weak
+// first.
+func (c *Catalogue) joinRows(ch *Channel) []*catalogueRow {
+	var at []int
+	for _, event := range append(eventKeys(ch), "") {
+		for _, station := range append(stationKeys(ch), "") {
+			for _, i := range c.joins[joinKey{event, station}] {
+				row := c.rows[i]
+				if (row.network == "" || strings.EqualFold(row.network, ch.Station.Network)) && row.fits(ch.Orientation) {
+					at = append(at, i)
+				}
+			}
+		}
+	}
+	return c.ordered(at)
+}
+
+// eventKeys are the names by which a row may call the channel's event.
+func eventKeys(ch *Channel) []string {
+	return keys(ch.Event.ID, EventCode(ch), ch.Event.Name)
+}
+
+// stationKeys are the names by which a row may call the channel's station.
+func stationKeys(ch *Channel) []string {
+	s := &ch.Station
+	if s.Code == "" || s.Network == "" {
+		return keys(s.Code)
+	}
+	return keys(s.Code, s.Network+s.Code, s.Network+"."+s.Code)
+}
+
+func keys(names ...string) []string {
+	var out []string
+	for _, n := range names {
+		if n = joinName(n); n != "" && !slices.Contains(out, n) {
+			out = append(out, n)
+		}
+	}
+	return out
+}
+
+// joinName is a code or name as it is compared: as in an id, without case.
+func joinName(s string) string { return clean(strings.ToLower(s), "", maxPart) }
+
+// apply puts what the row states into the channel.
+func (row *catalogueRow) apply(ch *Channel) {
+	from := &row.channel
+	ch.Event.ID = orElse(ch.Event.ID, row.event)
+	applyEvent(&ch.Event, &from.Event)
+	applyStation(&ch.Station, &from.Station)
+	ch.Instrument = orElse(from.Instrument, ch.Instrument)
+	ch.DistanceKM = from.DistanceKM.Or(ch.DistanceKM)
+	ch.LowCutHz = from.LowCutHz.Or(ch.LowCutHz)
+	ch.HighCutHz = from.HighCutHz.Or(ch.HighCutHz)
+	if from.Siting != "" {
+		ch.Siting = from.Siting
+	}
+	if azimuth := from.Orientation.AzimuthDeg; azimuth.Known && ch.Orientation.Axis != AxisVertical {
+		ch.Orientation.Axis = AxisHorizontal
+		ch.Orientation.AzimuthDeg = Known(math.Mod(azimuth.Value, 360))
+		ch.Orientation.Order = 0
+	}
+}
+
+// applyEvent keeps magnitude and type together: a magnitude without type is of
+// unknown type, not of the header's.
+func applyEvent(to, from *Event) {
+	to.Name = orElse(from.Name, to.Name)
+	if !from.Origin.IsZero() {
+		to.Origin, to.Date = from.Origin, from.Date
+	}
+	if !from.Date.IsZero() {
+		to.Date = from.Date
+	}
+	to.Latitude = from.Latitude.Or(to.Latitude)
+	to.Longitude = from.Longitude.Or(to.Longitude)
+	to.DepthKM = from.DepthKM.Or(to.DepthKM)
+	if from.Magnitude.Known {
+		to.Magnitude, to.MagnitudeType = from.Magnitude, ""
+	}
+	to.MagnitudeType = orElse(from.MagnitudeType, to.MagnitudeType)
+}
+
+func applyStation(to, from *Station) {
+	to.Name = orElse(from.Name, to.Name)
+	to.Latitude = from.Latitude.Or(to.Latitude)
+	to.Longitude = from.Longitude.Or(to.Longitude)
+	to.ElevationM = from.ElevationM.Or(to.ElevationM)
+	to.Vs30 = from.Vs30.Or(to.Vs30)
+}
+
+// Unmatched returns the lines of the rows that fitted nothing so far, in order.
+func (c *Catalogue) Unmatched() []int {
+	var lines []int
+	for _, row := range c.rows {
+		if !row.used.Load() {
+			lines = append(lines, row.line)
+		}
+	}
+	slices.Sort(lines)
+	return lines
+}

@@ -1,0 +1,70 @@
+package ingest
+
+import "math"
+
+// The limits outside which a number is taken for a mistake in unit or header.
+const (
+	// MinSamples is the shortest series that is read as a record.
+	MinSamples = 10
+	// MaxStepS is the coarsest sampling read, in s: 0.1 s carries nothing above
+	// 5 Hz.
+	MaxStepS = 0.1
+	// MinStepS is the finest sampling read, in s (10 kHz).
+	MinStepS = 1e-4
+	// MaxPeakG is the largest peak read, in g.
+	MaxPeakG = 20
+	// DoubtfulPeakG is the peak in g above which a warning asks for the unit.
+	DoubtfulPeakG = 5
+)
+
+// check holds a channel to the invariants that every reader owes.
+func check(c *Channel) error {
+	if n := len(c.Acceleration); n < MinSamples {
+		return refuse(c.Line, "samples", "%d values; a record needs at least %d", n, MinSamples)
+	}
+	if !(c.StepS > 0) || math.IsInf(c.StepS, 0) {
+		return refuse(c.Line, "dt", "time step %g s is not positive", c.StepS)
+	}
+	if c.StepS > MaxStepS || c.StepS < MinStepS {
+		return refuse(c.Line, "dt", "time step %g s is outside %g to %g s", c.StepS, MinStepS, MaxStepS)
+	}
+	return checkSamples(c)
+}
+
+func checkSamples(c *Channel) error {
+	peak, constant := 0.0, true
+	for i, a := range c.Acceleration {
+		if math.IsNaN(a) || math.IsInf(a, 0) {
+			return refuse(c.Line, "samples", "value %d is not finite", i+1)
+		}
+		c.Acceleration[i] = a + 0 // a negative zero is a zero
+		peak = max(peak, math.Abs(a))
+		constant = constant && a == c.Acceleration[0]
+	}
+	switch {
+	case constant:
+		return refuse(c.Line, "samples", "all %d values are equal: a dead channel", len(c.Acceleration))
+	case peak > MaxPeakG*StandardGravity:
+		return refuse(c.Line, "samples", "peak of %.3g g is beyond %d g: wrong unit %q or scale?", peak/StandardGravity, MaxPeakG, c.Unit)
+	case peak > DoubtfulPeakG*StandardGravity:
+		c.Warnings = append(c.Warnings, "peak above 5 g: check the unit")
+	}
+	return checkHeaderPeak(c, peak)
+}
+
+// checkHeaderPeak compares the samples' peak with the one that the header
+// states: over 1 % apart is a warning, over 20 % a wrong unit or damage.
+func checkHeaderPeak(c *Channel, peak float64) error {
+	if !c.HeaderPeak.Known || c.HeaderPeak.Value == 0 {
+		return nil
+	}
+	stated := math.Abs(c.HeaderPeak.Value)
+	off := math.Abs(peak-stated) / stated
+	switch {
+	case off > 0.20:
+		return refuse(c.Line, "peak", "samples reach %.5g m/s², the header says %.5g m/s²", peak, stated)
+	case off > 0.01:
+		c.Warnings = append(c.Warnings, "peak of the samples and of the header differ by more than 1 %")
+	}
+	return nil
+}

@@ -1,0 +1,60 @@
+package ingest
+
+import (
+	"fmt"
+	"strconv"
+)
+
+// ParseError says why a file, or one channel of it, was refused. It prints as
+// path:line: field: cause, without the parts that are empty.
+type ParseError struct {
+	Path  string
+	Line  int    // 1-based; 0 where the cause is not in one line
+	Field string // the header field or column at fault, "" for the file as a whole
+	Err   error  // the cause
+}
+
+// Error returns path:line: field: cause.
+func (e *ParseError) Error() string {
+	s := e.Path
+	if e.Line > 0 {
+		s += ":" + strconv.Itoa(e.Line)
+	}
+	return s + ": " + e.Cause()
+}
+
+// Cause returns the message without path and line: field: cause.
+func (e *ParseError) Cause() string {
+	if e.Field == "" {
+		return e.Err.Error()
+	}
+	return e.Field + ": " + e.Err.Error()
+}
+
+// Unwrap returns the cause.
+func (e *ParseError) Unwrap() error { return e.Err }
+
+// NotMotionError says that a file was recognised and holds no ground
+// acceleration: response spectra, a catalogue, a text to read. Such a file is
+// skipped, not rejected.
+type NotMotionError struct {
+	Reason string
+}
+
+// Error returns the reason.
+func (e *NotMotionError) Error() string { return e.Reason }
+
+// refuse builds the ParseError of a reader; the path is filled in by Parse.
+func refuse(line int, field, format string, args ...any) *ParseError {
+	return &ParseError{Line: line, Field: field, Err: fmt.Errorf(format, args...)}
+}
+
+// Found shortens text from a file to 40 characters for use in a message.
+func found(s string) string {
+	const limit = 40
+	r := []rune(s)
+	if len(r) > limit {
+		return strconv.Quote(string(r[:limit-1]) + "…")
+	}
+	return strconv.Quote(s)
+}

@@ -1,0 +1,144 @@
+package ingest
+
+import (
+	"bytes"
+	"errors"
+	"math"
+	"os"
+	"path/filepath"
+	"runtime"
+	"strings"
+	"testing"
+)
+
+// addFixtures seeds a fuzz target with all fixtures of a format.
+func addFixtures(f *testing.F, format string) {
+	f.Helper()
+	entries, err := os.ReadDir(recordsDir(format))
+	if err != nil {
+		f.Fatal(err)
+	}
+	for _, e := range entries {
+		if e.Name() != "README.md" {
+			f.Add(readFile(f, filepath.Join(recordsDir(format), e.Name())))
+		}
+	}
+}
+
+// fuzzFormat holds one reader to what every reader owes on any bytes: no panic,
+// an error of a known type that is in the file, channels that meet their
+// invariants, the input untouched, and memory bounded by the size of the input.
+func fuzzFormat(t *testing.T, reader Format, data []byte) {
+	before := bytes.Clone(data)
+	text, err := NewText(data)
+	if err != nil || reader.Sniff(text) == "" {
+		return
+	}
+	var start, end runtime.MemStats
+	runtime.ReadMemStats(&start)
+	channels, err := reader.Parse(text, Hints{})
+	runtime.ReadMemStats(&end)
+	// A value of eight bytes comes from at least one byte of text; headings are
+	// turned into text several times over.
+	if used := end.TotalAlloc - start.TotalAlloc; used > 1<<22+uint64(len(data))*200 {
+		t.Errorf("%d bytes allocated for %d bytes of text", used, len(data))
+	}
+	if !bytes.Equal(data, before) {
+		t.Error("Parse changed its input")
+	}
+	if err != nil {
+		var pe *ParseError
+		var not *NotMotionError
+		if !errors.As(err, &pe) && !errors.As(err, &not) {
+			t.Fatalf("error of type %T: %v", err, err)
+		}
+		if pe != nil && (pe.Line < 0 || pe.Line > text.Len()) {
+			t.Fatalf("error in line %d of %d: %v", pe.Line, text.Len(), err)
+		}
+		return
+	}
+	if len(channels) == 0 {
+		t.Fatal("neither channels nor an error")
+	}
+	for i := range channels {
+		checkInvariants(t, &channels[i], text)
+	}
+}
+
+// checkInvariants looks at what Channel promises, as far as a reader answers
+// for it; the rest is refused by check.
+func checkInvariants(t *testing.T, c *Channel, text *Text) {
+	t.Helper()
+	if !(c.StepS > 0) || math.IsInf(c.StepS, 0) || len(c.Acceleration) == 0 || !(c.UnitMPS2 > 0) || c.Unit == "" {
+		t.Fatalf("dt %g s, %d values, unit %q of %g m/s²", c.StepS, len(c.Acceleration), c.Unit, c.UnitMPS2)
+	}
+	if c.Line < 1 || c.Line > text.Len() {
+		t.Fatalf("first sample in line %d of %d", c.Line, text.Len())
+	}
+	if az := c.Orientation.AzimuthDeg; az.Known && (c.Orientation.Axis != AxisHorizontal || az.Value < 0 || az.Value >= 360) {
+		t.Fatalf("orientation %+v", c.Orientation)
+	}
+	if c.LowCutHz.Known && c.HighCutHz.Known && c.LowCutHz.Value >= c.HighCutHz.Value {
+		t.Fatalf("corners %v, %v", c.LowCutHz, c.HighCutHz)
+	}
+	if lat, lon := c.Station.Latitude, c.Station.Longitude; math.Abs(lat.Value) > 90 || math.Abs(lon.Value) > 180 || lat.Known != lon.Known {
+		t.Fatalf("station at %v, %v", lat, lon)
+	}
+	for i, a := range c.Acceleration {
+		if math.IsNaN(a) {
+			t.Fatalf("value %d is NaN", i+1)
+		}
+	}
+	if err := check(c); err != nil {
+		var pe *ParseError
+		if !errors.As(err, &pe) {
+			t.Fatalf("check: error of type %T: %v", err, err)
+		}
+		return
+	}
+	for _, s := range []Siting{SitingUnknown, SitingFreeField, SitingGround, SitingStructure, SitingBorehole} {
+		if c.Siting == s {
+			return
+		}
+	}
+	t.Fatalf("siting %q", c.Siting)
+}
+
+// hugeV2 and hugeCosmos announce two thousand million values and hold a hundred.
+func hugeV2(t testing.TB) []string {
+	lines := edit(t, v2Bridge.lines(), 46, "96", "2000000000")
+	lines = edit(t, edit(t, lines, 29, "   96", "    0"), 29, "   96", "    0")
+	return edit(t, lines, 16, "96", "  ")
+}
+
+func hugeCosmos(t testing.TB) []string {
+	return edit(t, cosmosBase.lines(), lineData, "     150", "2000000000")
+}
+
+func TestAnnouncedCountAllocatesNothing(t *testing.T) {
+	for name, lines := range map[string][]string{"california-v2": hugeV2(t), "cosmos": hugeCosmos(t)} {
+		data := []byte(strings.Join(lines, "\n"))
+		var start, end runtime.MemStats
+		runtime.ReadMemStats(&start)
+		format, _, err := Parse("f", data, Hints{})
+		runtime.ReadMemStats(&end)
+		if err == nil || format != name || !strings.Contains(err.Error(), "announced 2000000000 values") {
+			t.Errorf("Parse = %s, %v, want the announced count refused", format, err)
+		}
+		if used := end.TotalAlloc - start.TotalAlloc; used > 1<<20 {
+			t.Errorf("%s: %d bytes allocated for %d bytes of text", name, used, len(data))
+		}
+	}
+}
+
+func FuzzCaliforniaV2(f *testing.F) {
+	addFixtures(f, "californiav2")
+	f.Add([]byte(strings.Join(hugeV2(f), "\n")))
+	f.Fuzz(func(t *testing.T, data []byte) { fuzzFormat(t, californiaV2{}, data) })
+}
+
+func FuzzCOSMOS(f *testing.F) {
+	addFixtures(f, "cosmos")
+	f.Add([]byte(strings.Join(hugeCosmos(f), "\n")))
+	f.Fuzz(func(t *testing.T, data []byte) { fuzzFormat(t, cosmos{}, data) })
+}

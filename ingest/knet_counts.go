@@ -1,0 +1,122 @@
+package ingest
+
+import (
+	"math"
+	"strconv"
+)
+
+// maxCount is the largest count read, that of a 32-bit digitiser. Sums of
+// MaxFileSize/2 such counts fit an int64.
+const maxCount = math.MaxInt32
+
+// readCounts reads exactly count integers from line on.
+func readCounts(t *Text, line, count int) ([]float64, error) {
+	counts := make([]float64, 0, min(count, countFields(t, line)))
+	for n := line; n <= t.Len(); n++ {
+		rest := t.Bytes(n)
+		for {
+			var field []byte
+			if field, rest = nextField(rest); field == nil {
+				break
+			}
+			v, ok := parseInteger(field)
+			if !ok {
+				return nil, refuse(n, "samples", "expected an integer, found %s", found(string(field)))
+			}
+			if len(counts) == count {
+				return nil, refuse(n, "samples", "announced %d values, found more", count)
+			}
+			counts = append(counts, float64(v))
+		}
+	}
+	if len(counts) < count {
+		return nil, truncated(t.Len(), "samples", count, len(counts))
+	}
+	return counts, nil
+}
+
+// countFields is an upper bound of the fields from line on: a field and its
+// blank take two bytes at least, so that what a header announces cannot make
+// the reader allocate more than a few times the file's size.
+func countFields(t *Text, line int) int {
+	n := 0
+	for i := line; i <= t.Len(); i++ {
+		n += len(t.Bytes(i))/2 + 1
+	}
+	return n
+}
+
+// nextField returns the next run of bytes that are no blanks, nil at the end,
+// and what follows it.
+func nextField(line []byte) (field, rest []byte) {
+	i := 0
+	for i < len(line) && isBlank(line[i]) {
+		i++
+	}
+	if i == len(line) {
+		return nil, nil
+	}
+	j := i + 1
+	for j < len(line) && !isBlank(line[j]) {
+		j++
+	}
+	return line[i:j], line[j:]
+}
+
+func isBlank(b byte) bool { return b == ' ' || b == '\t' || b == '\f' || b == '\v' }
+
+func parseInteger(b []byte) (int64, bool) {
+	if len(b) > 11 { // a sign and ten digits
+		return 0, false
+	}
+	v, err := strconv.ParseInt(string(b), 10, 64)
+	return v, err == nil && -maxCount <= v && v <= maxCount
+}
+
+// removeMean turns counts into m/s² about the mean of the whole record, which
+// the network's own peak refers to. The sum is exact.
+func removeMean(c *Channel) {
+	sum := int64(0)
+	for _, v := range c.Acceleration {
+		sum += int64(v)
+	}
+	mean := float64(sum) / float64(len(c.Acceleration))
+	for i, v := range c.Acceleration {
+		c.Acceleration[i] = (v - mean) * c.UnitMPS2
+	}
+}
+
+// clippedRun is the number of equal samples at the extreme that suggests a
+// clipped recording.
+const clippedRun = 3
+
+// warnClipping looks for runs of at least limit equal samples at the largest or
+// smallest value.
+func warnClipping(c *Channel, limit int) {
+	if run, at := longestExtreme(c.Acceleration); run >= limit {
+		c.warn("%d consecutive samples at the extreme, from sample %d on: clipped?", run, at+1)
+	}
+}
+
+// longestExtreme returns the longest run of equal samples at either extreme and
+// its first index.
+func longestExtreme(xs []float64) (run, at int) {
+	if len(xs) == 0 {
+		return 0, 0
+	}
+	low, high := xs[0], xs[0]
+	for _, x := range xs {
+		low, high = min(low, x), max(high, x)
+	}
+	for i := 0; i < len(xs); {
+		j := i + 1
+		for j < len(xs) && xs[j] == xs[i] {
+			j++
+		}
+		if (xs[i] == low || xs[i] == high) && j-i > run {
+			run, at = j-i, i
+		}
+		i = j
+	}
+	return run, at
+}

@@ -1,0 +1,51 @@
+package ingest
+
+import (
+	"errors"
+	"testing"
+)
+
+func TestNotMotion(t *testing.T) {
+	cases := []struct {
+		name, text     string
+		skip, rejected string
+	}{
+		{"catalogue", "file,unit,dt_s\na.txt,g,0.01\n", "a catalogue of records, not a record", ""},
+		{"catalogue with semicolons", "# invented\n\nEvent; Station; Distance km\ne;s;10\n", "a catalogue of records, not a record", ""},
+		{"ordinates", "record,component,damping,period_s,sd_m\nr,h1,0.05,0.1,1e-3\n", "spectral ordinates exported as a table, not a time series", ""},
+		{"page", "\n<!DOCTYPE HTML><html>", "", "case:2: an HTML page, not a record: a download that went wrong?"},
+		{"page in XML", "<?xml version='1.0'?>\n<html xmlns='x'>", "", "case:1: an HTML page, not a record: a download that went wrong?"},
+		{"XML", "<?xml version='1.0'?>\n<quake/>", "an XML document, not a record", ""},
+		{"columns", "time,acc\n0,1\n", "", ""},
+		{"one known name", "station\nABC\n", "", ""},
+		{"no key", "magnitude,depth_km\n5,10\n", "", ""},
+	}
+	for _, k := range cases {
+		text, err := NewText([]byte(k.text))
+		if err != nil {
+			t.Fatal(err)
+		}
+		err = notMotion(text)
+		if pe, ok := errors.AsType[*ParseError](err); ok {
+			pe.Path = "case"
+		}
+		want := k.skip + k.rejected
+		if _, skip := errors.AsType[*NotMotionError](err); skip != (k.skip != "") || (err == nil) != (want == "") || err != nil && err.Error() != want {
+			t.Errorf("%s: %v, want %q", k.name, err, want)
+		}
+	}
+}
+
+func TestSkipByName(t *testing.T) {
+	for name, want := range map[string]string{
+		"README": "a readme", "Readme.txt": "a readme", "README.md": "a readme", "notes.md": "a Markdown text", "x.markdown": "a Markdown text",
+		"LICENSE": "a licence", "licence.txt": "a licence", "COPYING": "a licence", ".gitignore": "a hidden file", "._quake.v2": "a hidden file",
+		".DS_Store": "a file of the operating system", "Thumbs.db": "a file of the operating system", "desktop.ini": "a file of the operating system",
+		"~$list.xlsx": "a file of the operating system",
+		"quake.v2":    "", "readme2.v2": "", "ABC001.NS": "", "": "",
+	} {
+		if got := SkipByName(name); got != want {
+			t.Errorf("SkipByName(%q) = %q, want %q", name, got, want)
+		}
+	}
+}

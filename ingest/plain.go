@@ -1,0 +1,235 @@
+package ingest
+
+import (
+	"bytes"
+	"math"
+	"strings"
+)
+
+// plain reads columns of numbers that follow no known format: one column of
+// accelerations, a time and an acceleration, or columns whose names say what
+// they are. It is the last resort: what the file does not say about unit and
+// time step must come from hints, and what could be read in two ways is refused.
+//
+// The rules are common practice; there is no standard behind them.
+type plain struct{}
+
+// Name returns "plain".
+func (plain) Name() string { return "plain" }
+
+const (
+	// plainPreamble is how many lines may stand before the first number.
+	plainPreamble = 100
+	// plainHeadLines is how many lines of numbers decide delimiter and decimal mark.
+	plainHeadLines = 200
+	// plainSniffed is how many lines of numbers Sniff looks at.
+	plainSniffed = 50
+)
+
+// Sniff looks for lines of numbers: below the preamble 95 % of the first lines,
+// or all but two of them, must look like numbers.
+func (plain) Sniff(t *Text) string {
+	first := firstNumbers(t)
+	if first == 0 {
+		return ""
+	}
+	lines, good := 0, 0
+	for n := first; n <= t.Len() && lines < plainSniffed; n++ {
+		line := t.Bytes(n)
+		if len(bytes.TrimSpace(line)) == 0 || isComment(line) {
+			continue
+		}
+		lines++
+		if numberLike(line) {
+			good++
+		}
+	}
+	if bad := lines - good; bad > max(2, lines/20) || good <= bad {
+		return ""
+	}
+	return "lines of numbers"
+}
+
+// Parse reads the value columns as channels.
+func (plain) Parse(t *Text, hints Hints) ([]Channel, error) {
+	head, err := readPlainHead(t)
+	if err != nil {
+		return nil, err
+	}
+	form, err := detectLayout(t, head.first)
+	if err != nil {
+		return nil, err
+	}
+	columns, err := head.columns(form)
+	if err != nil {
+		return nil, err
+	}
+	rows, err := readRows(t, head.first, form)
+	if err != nil {
+		return nil, err
+	}
+	columns, err = settleColumns(columns, rows)
+	if err != nil {
+		return nil, err
+	}
+	step, err := head.step(columns, rows, hints)
+	if err != nil {
+		return nil, err
+	}
+	return head.channels(columns, rows, step, hints)
+}
+
+// channels makes a channel of each value column.
+func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float64, hints Hints) ([]Channel, error) {
+	var out []Channel
+	for i, col := range columns {
+		if col.kind != columnValue {
+			continue
+		}
+		unit, warning, err := h.unit(col, hints)
+		if err != nil {
+			return nil, err
+		}
+		c := Channel{
+			Orientation: col.orientation, StepS: step, Line: rows.line[0],
+			Acceleration: rows.values[i], Unit: unit.Name, UnitMPS2: unit.MPS2,
+			Siting: SitingUnknown, Processing: ProcessingUnknown,
+		}
+		if warning != "" {
+			c.warn("%s", warning)
+		}
+		if rows.minus > 0 {
+			c.warn("line %d: U+2212 read as a minus sign", rows.minus)
+		}
+		if err := h.describe(&c); err != nil {
+			return nil, err
+		}
+		if err := checkSentinels(&c, rows); err != nil {
+			return nil, err
+		}
+		warnClipping(&c, clippedRun+1)
+		warnOffset(&c)
+		scale(c.Acceleration, unit.MPS2)
+		out = append(out, c)
+	}
+	return out, nil
+}
+
+// warnOffset warns of a mean over a tenth of the peak, which stays in the
+// samples.
+func warnOffset(c *Channel) {
+	sum, peak := 0.0, 0.0
+	for _, v := range c.Acceleration {
+		sum += v
+		peak = max(peak, math.Abs(v))
+	}
+	if mean := sum / float64(len(c.Acceleration)); math.Abs(mean) > 0.1*peak {
+		c.warn("mean of %.3g %s is over a tenth of the peak: an offset?", mean, c.Unit)
+	}
+}
+
+// unit joins what the column's name and the comments say with the hints.
+func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
+	comment := h.stated("unit", "units")
+	if col.unit.text == "" {
+		return chooseUnit(comment, hints)
+	}
+	if comment.text != "" {
+		a, errA := ParseUnit(col.unit.text)
+		b, errB := ParseUnit(comment.text)
+		if errA == nil && errB == nil && a.MPS2 != b.MPS2 {
+			return Unit{}, "", refuse(col.unit.line, "unit", "the column says %s, the comment on line %d says %s", a.Name, comment.line, b.Name)
+		}
+	}
+	return chooseUnit(col.unit, hints)
+}
+
+// step joins what the time column, the comments and the hints say.
+func (h *plainHead) step(columns []plainColumn, rows *plainRows, hints Hints) (float64, error) {
+	stated, line, err := h.statedStep()
+	if err != nil {
+		return 0, err
+	}
+	for i, col := range columns {
+		if col.kind != columnTime {
+			continue
+		}
+		timed, err := timeStep(rows.values[i], rows.resolution[i], rows.line)
+		if err != nil {
+			return 0, err
+		}
+		if col.scale != 0 {
+			timed = nearlyNice(timed * col.scale)
+		} else {
+			timed = nearlyNice(timed)
+		}
+		if stated == 0 {
+			stated, line = timed, rows.line[0]
+		} else if math.Abs(timed-stated) > stepAgreement*timed {
+			return 0, refuse(line, "dt", "the comment says %.6g s, the time column steps by %.6g s", stated, timed)
+		}
+	}
+	switch {
+	case stated != 0:
+		return stated, checkStep(stated, line, hints)
+	case hints.StepS != 0:
+		return hints.StepS, nil
+	}
+	return 0, refuse(0, "dt", "the file states no time step: give it with --dt or in the catalogue's dt_s column")
+}
+
+// commentMarks begin a comment line.
+var commentMarks = []string{"#", "%", "!", ";", "*", "//", "\""}
+
+// isComment reports whether line is a comment: its first characters that are no
+// blanks are a comment mark. Quoted numbers and a row of asterisks, a number
+// that did not fit its field, are none.
+func isComment(line []byte) bool {
+	line = bytes.TrimSpace(line)
+	for _, mark := range commentMarks {
+		if !bytes.HasPrefix(line, []byte(mark)) {
+			continue
+		}
+		return !(mark == "\"" && numberLike(line) || mark == "*" && len(bytes.Trim(line, "* \t")) == 0)
+	}
+	return false
+}
+
+// missingMarks are how tables write a value that is not there, in lower case.
+var missingMarks = []string{"nan", "inf", "-inf", "+inf", "null", "n/a", "na", "none", "-", "--"}
+
+// isMissing reports whether a field, trimmed, stands for no value.
+func isMissing(field string) bool {
+	lower := strings.ToLower(field)
+	for _, m := range missingMarks {
+		if lower == m {
+			return true
+		}
+	}
+	return field == "" || strings.Trim(field, "*") == "" || strings.Contains(field, "#IND") || strings.Contains(field, "#INF") || strings.Contains(field, "#QNAN")
+}
+
+// numberLike reports whether a line could be numbers, well formed or not: every
+// field holds a digit and nothing that no number, time or separator is written
+// with, or marks a missing value; one field at least is a number.
+func numberLike(line []byte) bool {
+	numbers, ok := likeNumbers(line)
+	return ok && numbers > 0
+}
+
+// likeNumbers counts the fields that could be numbers and reports whether there
+// are none but those and missing values.
+func likeNumbers(line []byte) (numbers int, ok bool) {
+	for _, field := range bytes.FieldsFunc(line, isSeparator) {
+		f := strings.Trim(string(field), "\"")
+		switch {
+		case strings.ContainsAny(f, "0123456789") && strings.Trim(f, "0123456789+-.eEdDT:Z−'") == "":
+			numbers++
+		case !isMissing(f):
+			return 0, false
+		}
+	}
+	return numbers, true
+}
+
+func isSeparator(r rune) bool { return r == ' ' || r == '\t' || r == ',' || r == ';' }

@@ -1,0 +1,260 @@
+package ingest
+
+import (
+	"bytes"
+	"strings"
+)
+
+// plainHead is what stands before the numbers of a plain file.
+type plainHead struct {
+	first    int // line of the first numbers
+	comments []comment
+	// names is the text of the line directly before the numbers, a header row
+	// perhaps, and namesLine its number, 0 where there is none.
+	names     string
+	namesLine int
+	// sure says that names is no comment: it may fail to name columns, but then
+	// it must not hide a value.
+	sure bool
+}
+
+// comment is one key and value of a comment line.
+type comment struct {
+	key, value string
+	line       int
+}
+
+// firstNumbers returns the first line of numbers, the first that looks like it
+// where none is well formed, or 0 where the preamble is too long.
+func firstNumbers(t *Text) int {
+	like := 0
+	for n := 1; n <= min(t.Len(), plainPreamble+1); n++ {
+		line := t.Bytes(n)
+		if isComment(line) || !numberLike(line) {
+			continue
+		}
+		for _, l := range layouts {
+			if _, ok := l.count(line); ok {
+				return n
+			}
+		}
+		if like == 0 {
+			like = n
+		}
+	}
+	return like
+}
+
+// maxHeading is the longest line, in bytes, that is looked at for names, keys
+// and values.
+const maxHeading = 1000
+
+func readPlainHead(t *Text) (*plainHead, error) {
+	h := &plainHead{first: firstNumbers(t)}
+	if h.first == 0 {
+		return nil, refuse(min(t.Len(), plainPreamble), "samples", "no data found in the first %d lines", plainPreamble)
+	}
+	for n := 1; n < h.first; n++ {
+		line := t.Bytes(n)
+		if len(bytes.TrimSpace(line)) == 0 {
+			continue
+		}
+		h.names, h.namesLine, h.sure = strings.TrimSpace(latin(line)), n, !isComment(line)
+		if len(line) > maxHeading {
+			h.names, h.namesLine = "", 0
+			continue
+		}
+		if !h.sure {
+			h.names = strings.TrimSpace(strings.TrimLeft(h.names, "#%!;*/\""))
+			h.comments = append(h.comments, splitComment(h.names, n)...)
+		}
+	}
+	if _, values := likeNumbers([]byte(h.names)); values && h.sure && h.namesLine > 0 {
+		return nil, refuse(h.namesLine, "samples", "%s", badLine(t.Bytes(h.namesLine)))
+	}
+	return h, nil
+}
+
+// splitComment returns the keys and values of a comment: "dt = 0.01",
+// "unit: cm/s2", or several "key=value" between commas or semicolons.
+func splitComment(text string, line int) []comment {
+	text = strings.TrimRight(text, "\" ")
+	parts := strings.FieldsFunc(text, func(r rune) bool { return r == ',' || r == ';' })
+	for _, p := range parts {
+		if !strings.Contains(p, "=") {
+			parts = []string{text}
+			break
+		}
+	}
+	var out []comment
+	for _, p := range parts {
+		at := strings.IndexAny(p, "=:")
+		if at < 0 {
+			continue
+		}
+		key, unit := splitUnit(strings.TrimSpace(p[:at]))
+		value := strings.TrimSpace(p[at+1:])
+		if value == "" {
+			continue
+		}
+		if unit != "" {
+			value += " " + unit
+		}
+		out = append(out, comment{commentKey(key), value, line})
+	}
+	return out
+}
+
+// commentKey spells a key in lower case with underscores.
+func commentKey(key string) string {
+	return strings.Join(strings.FieldsFunc(strings.ToLower(key), func(r rune) bool {
+		return r == ' ' || r == '\t' || r == '-' || r == '_'
+	}), "_")
+}
+
+// stated returns what the first comment of any of the keys says.
+func (h *plainHead) stated(keys ...string) statement {
+	for _, c := range h.comments {
+		for _, k := range keys {
+			if c.key == k {
+				return statement{c.value, c.line}
+			}
+		}
+	}
+	return statement{}
+}
+
+// statedStep returns the time step in s that a comment states as step or rate,
+// 0 where none does.
+func (h *plainHead) statedStep() (step float64, line int, err error) {
+	if s := h.stated("dt", "time_step", "delta_t", "sampling_interval", "sample_interval"); s.text != "" {
+		v, unit, ok := quantity(s.text)
+		switch {
+		case ok && v > 0 && (unit == "" || isSeconds(unit)):
+			return v, s.line, nil
+		case ok && v > 0 && unit == "ms":
+			return v / 1000, s.line, nil
+		}
+		return 0, 0, refuse(s.line, "dt", "expected a time step over zero in s, found %s", found(s.text))
+	}
+	if s := h.stated("rate", "sampling_rate", "sample_rate", "sampling_frequency", "samples_per_second", "sps"); s.text != "" {
+		v, unit, ok := quantity(s.text)
+		if ok && v > 0 && (unit == "" || unit == "hz" || unit == "sps") {
+			return 1 / v, s.line, nil
+		}
+		return 0, 0, refuse(s.line, "rate", "expected a sampling rate over zero in Hz, found %s", found(s.text))
+	}
+	return 0, 0, nil
+}
+
+func isSeconds(unit string) bool {
+	switch strings.ToLower(unit) {
+	case "s", "sec", "secs", "second", "seconds":
+		return true
+	}
+	return false
+}
+
+// quantity splits "0.01 s" or "100Hz" into number and unit, the unit in lower
+// case.
+func quantity(text string) (v float64, unit string, ok bool) {
+	text = strings.TrimSpace(text)
+	end := len(text)
+	for end > 0 && !isDigit(text[end-1]) && text[end-1] != '.' {
+		end--
+	}
+	v, ok = parseNumber([]byte(text[:end]))
+	return v, strings.ToLower(strings.TrimSpace(text[end:])), ok
+}
+
+// describe fills in what comments say of the record. Keys that are not known
+// are prose; a known one that makes no sense is a warning, but for unit, step
+// and direction, which decide what the numbers mean.
+func (h *plainHead) describe(c *Channel) error {
+	for _, s := range h.comments {
+		var ok bool
+		switch s.key {
+		case "event", "event_id", "event_name", "station", "station_code", "station_name", "network", "instrument", "channel", "magnitude_type":
+			describeText(c, s)
+			continue
+		case "origin_time":
+			c.Event.Origin, c.Event.Date, ok = parseInstant(s.value)
+		case "start", "start_time":
+			c.Start, _, ok = parseInstant(s.value)
+			ok = ok && !c.Start.IsZero()
+		case "siting":
+			c.Siting, ok = parseSiting(s.value)
+		case "component", "direction", "azimuth", "azimuth_deg":
+			if c.Orientation.Axis != AxisUnknown {
+				continue // the column's name says it
+			}
+			if c.Orientation, ok = direction(s.value); !ok {
+				return refuse(s.line, s.key, "unknown direction %s", found(s.value))
+			}
+		default:
+			ok = describeNumber(c, s)
+		}
+		if !ok {
+			c.warn("line %d: %s %s not understood", s.line, s.key, found(s.value))
+		}
+	}
+	return nil
+}
+
+// describeText sets a text. An event or station of one word is a code, of
+// several a name.
+func describeText(c *Channel, s comment) {
+	word := !strings.ContainsAny(s.value, " \t")
+	switch s.key {
+	case "event", "event_id":
+		if word || s.key == "event_id" {
+			c.Event.ID = s.value
+		} else {
+			c.Event.Name = s.value
+		}
+	case "station", "station_code":
+		if word || s.key == "station_code" {
+			c.Station.Code = s.value
+		} else {
+			c.Station.Name = s.value
+		}
+	case "event_name":
+		c.Event.Name = s.value
+	case "station_name":
+		c.Station.Name = s.value
+	case "network":
+		c.Station.Network = s.value
+	case "instrument":
+		c.Instrument = s.value
+	case "channel":
+		c.ChannelCode = s.value
+	case "magnitude_type":
+		c.Event.MagnitudeType = s.value
+	}
+}
+
+// describeNumber sets a number; it reports false where a known key has none.
+func describeNumber(c *Channel, s comment) bool {
+	places := map[string]struct {
+		place     *Number
+		low, high float64
+	}{
+		"magnitude": {&c.Event.Magnitude, -2, 11}, "distance_km": {&c.DistanceKM, 0, 20100},
+		"depth_km": {&c.Event.DepthKM, -10, 800}, "vs30": {&c.Station.Vs30, 1, 1e4}, "vs30_m_s": {&c.Station.Vs30, 1, 1e4},
+		"event_latitude": {&c.Event.Latitude, -90, 90}, "event_longitude": {&c.Event.Longitude, -180, 360},
+		"station_latitude": {&c.Station.Latitude, -90, 90}, "latitude": {&c.Station.Latitude, -90, 90},
+		"station_longitude": {&c.Station.Longitude, -180, 360}, "longitude": {&c.Station.Longitude, -180, 360},
+		"elevation_m": {&c.Station.ElevationM, -500, 9000},
+		"low_cut_hz":  {&c.LowCutHz, 1e-6, 1e4}, "high_cut_hz": {&c.HighCutHz, 1e-6, 1e4},
+	}
+	p, ok := places[s.key]
+	if !ok {
+		return true
+	}
+	v, ok := parseNumber([]byte(s.value))
+	if !ok || v < p.low || v > p.high {
+		return false
+	}
+	*p.place = Known(v)
+	return true
+}

@@ -1,0 +1,237 @@
+package ingest
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"regexp"
+	"strings"
+)
+
+// layout is how the numbers of a plain file are written: what separates them,
+// what marks their decimals, and how many stand on a line.
+type layout struct {
+	delimiter byte // ' ' for any run of blanks
+	comma     bool // decimal comma
+	fields    int
+}
+
+// layouts are the readings that are tried; of two that fit equally well the
+// first is taken. A decimal comma between commas is not one: it could be read
+// in two ways.
+var layouts = []layout{
+	{delimiter: '\t'}, {delimiter: '\t', comma: true},
+	{delimiter: ';'}, {delimiter: ';', comma: true},
+	{delimiter: ','},
+	{delimiter: ' '}, {delimiter: ' ', comma: true},
+}
+
+// detectLayout finds the reading that fits most of the first lines of numbers.
+func detectLayout(t *Text, first int) (layout, error) {
+	lines := headLines(t, first)
+	best, fits := layout{}, 0
+	for _, l := range layouts {
+		if fields, n := l.fit(lines); n > fits {
+			best, fits = l, n
+			best.fields = fields
+		}
+	}
+	if fits == 0 {
+		return layout{}, refuse(first, "samples", "%s", badLine(t.Bytes(first)))
+	}
+	if best.comma && best.fields == 1 {
+		pairs, n := (layout{delimiter: ','}).fit(lines)
+		if n == fits && pairs == 2 && integerPairs(lines) {
+			return layout{}, refuse(first, "samples", "%s may be one number with a decimal comma or two integers; write decimal points", found(string(lines[0])))
+		}
+	}
+	if best.delimiter == ',' && best.fields >= 4 && best.fields%2 == 0 && !bytes.Contains(bytes.Join(lines, nil), []byte(".")) {
+		return layout{}, refuse(first, "samples", "%s: commas may separate numbers or mark decimals; write decimal points", found(string(lines[0])))
+	}
+	return best, nil
+}
+
+// headLines returns the first lines of numbers, up to plainHeadLines.
+func headLines(t *Text, first int) [][]byte {
+	var lines [][]byte
+	for n := first; n <= t.Len() && len(lines) < plainHeadLines; n++ {
+		if line := bytes.TrimSpace(t.Bytes(n)); len(line) > 0 {
+			lines = append(lines, line)
+		}
+	}
+	return lines
+}
+
+// fit returns the number of fields that most lines have under the layout, all
+// of them numbers, and the number of those lines.
+func (l layout) fit(lines [][]byte) (fields, fits int) {
+	counts := map[int]int{}
+	for _, line := range lines {
+		if n, ok := l.count(line); ok {
+			counts[n]++
+		}
+	}
+	for n, c := range counts {
+		if c > fits || c == fits && n < fields {
+			fields, fits = n, c
+		}
+	}
+	return fields, fits
+}
+
+// count returns the number of fields of a line; it reports false where one is
+// no number.
+func (l layout) count(line []byte) (n int, ok bool) {
+	var room [64]byte
+	for rest, more := line, true; more; {
+		var field []byte
+		if field, rest, more = l.next(rest); field == nil {
+			break
+		}
+		if _, ok := l.number(field, room[:0]); !ok {
+			return 0, false
+		}
+		n++
+	}
+	return n, n > 0
+}
+
+// integerPairs reports whether every line is two integers as people write them:
+// no leading zeros, no negative zero.
+func integerPairs(lines [][]byte) bool {
+	for _, line := range lines {
+		a, b, _ := bytes.Cut(line, []byte(","))
+		if !isPlainInteger(a) || !isPlainInteger(b) {
+			return false
+		}
+	}
+	return true
+}
+
+func isPlainInteger(b []byte) bool {
+	digits := bytes.TrimPrefix(bytes.TrimSpace(b), []byte("-"))
+	if len(digits) == 0 || len(bytes.Trim(digits, "0123456789")) > 0 {
+		return false
+	}
+	return digits[0] != '0' || len(digits) == 1 && b[0] != '-'
+}
+
+// next returns the next field of a line without blanks and quotes, nil where
+// there is none, what follows it, and whether anything does. A delimiter at the
+// end of the line makes no field.
+func (l layout) next(line []byte) (field, rest []byte, more bool) {
+	if l.delimiter == ' ' {
+		field, rest = nextField(line)
+		return unquote(field), rest, len(rest) > 0
+	}
+	if len(bytes.TrimSpace(line)) == 0 {
+		return nil, nil, false
+	}
+	i := bytes.IndexByte(line, l.delimiter)
+	if i < 0 {
+		return unquote(bytes.TrimSpace(line)), nil, false
+	}
+	return unquote(bytes.TrimSpace(line[:i])), line[i+1:], true
+}
+
+func unquote(field []byte) []byte {
+	if n := len(field); n >= 2 && field[0] == '"' && field[n-1] == '"' {
+		return bytes.TrimSpace(field[1 : n-1])
+	}
+	return field
+}
+
+// maxPlain is the magnitude from which a number is an overflow mark, the
+// largest value of a float in single precision being 3.4e38.
+const maxPlain = 1e38
+
+var unicodeMinus = []byte("−")
+
+// number reads a field; scratch is room for a rewritten copy. It reports false
+// for what is no number, for a sign inside, and for magnitudes of maxPlain.
+func (l layout) number(field, scratch []byte) (float64, bool) {
+	if bytes.HasPrefix(field, unicodeMinus) {
+		scratch = append(append(scratch, '-'), field[len(unicodeMinus):]...)
+		field = scratch
+	}
+	if l.comma {
+		if bytes.IndexByte(field, '.') >= 0 {
+			return 0, false
+		}
+		if i := bytes.IndexByte(field, ','); i >= 0 {
+			field = append(scratch[:0], field...)
+			field[i] = '.'
+		}
+	}
+	for i := 1; i < len(field); i++ {
+		if (field[i] == '-' || field[i] == '+') && (isDigit(field[i-1]) || field[i-1] == '.') {
+			return 0, false
+		}
+	}
+	v, ok := parseNumber(field)
+	return v, ok && math.Abs(v) < maxPlain
+}
+
+var (
+	thousands  = regexp.MustCompile(`^[-+]?\d{1,3}(,\d{3})+\.\d*$|^[-+]?\d{1,3}(\.\d{3})+,\d*$`)
+	spaced     = regexp.MustCompile(`^[-+]?\d{1,3}( \d{3})+[.,]\d*$`)
+	timeOfDay  = regexp.MustCompile(`^['"]?(\d{4}-\d{2}-\d{2}[T ]?)?(\d{1,2}:\d{2}(:\d{2})?)?`)
+	innerSign  = regexp.MustCompile(`[0-9.][-+−][0-9.]`)
+	moreBlanks = regexp.MustCompile(`\s+`)
+)
+
+// badLine says what is wrong with a line that no layout reads.
+func badLine(line []byte) string {
+	text := strings.TrimSpace(latin(line))
+	if thousands.MatchString(text) || spaced.MatchString(text) {
+		return fmt.Sprintf("%s: thousands separators are not read", found(text))
+	}
+	for _, field := range strings.FieldsFunc(text, func(r rune) bool { return r == ' ' || r == '\t' || r == ';' }) {
+		if cause := badField(strings.Trim(field, "\"")); cause != "" {
+			return cause
+		}
+	}
+	return fmt.Sprintf("expected numbers, found %s", found(text))
+}
+
+// badField says what is wrong with a field, "" where nothing plainly is.
+func badField(field string) string {
+	switch {
+	case isMissing(strings.Trim(field, ",")):
+		return fmt.Sprintf("value %s: missing values are not read", found(field))
+	case strings.Contains(field, ":") && timeOfDay.FindString(field) != "":
+		return fmt.Sprintf("%s is a clock time; give seconds from the start", found(field))
+	case thousands.MatchString(field):
+		return fmt.Sprintf("%s: thousands separators are not read", found(field))
+	case innerSign.MatchString(field):
+		return fmt.Sprintf("%s: fields touch, as in a fixed-width file; separate them", found(field))
+	}
+	if v, ok := parseNumber([]byte(field)); ok && math.Abs(v) >= maxPlain {
+		return fmt.Sprintf("value %s is an overflow mark", found(field))
+	}
+	return ""
+}
+
+// cause says why a line does not fit the layout that the others have.
+func (l layout) cause(line []byte) string {
+	n := 0
+	for rest, more := line, true; more; {
+		var field []byte
+		if field, rest, more = l.next(rest); field == nil {
+			break
+		}
+		n++
+		if _, ok := l.number(field, nil); ok {
+			continue
+		}
+		text := latin(field)
+		if cause := badField(text); cause != "" {
+			return cause
+		}
+		if bytes.ContainsAny(field, ".,") && strings.Trim(text, "0123456789.,+-") == "" {
+			return fmt.Sprintf("%s: decimal points and decimal commas in one file", found(text))
+		}
+		return fmt.Sprintf("expected a number, found %s", found(text))
+	}
+	return fmt.Sprintf("line holds %d values where the others hold %d", n, l.fields)
+}

@@ -1,0 +1,139 @@
+package ingest
+
+import (
+	"bytes"
+	"encoding/binary"
+	"unicode/utf16"
+	"unicode/utf8"
+)
+
+// MaxLine is the longest line that is read, in bytes. Anything longer is not a
+// text that a person or an instrument wrote line by line.
+const MaxLine = 1 << 20
+
+// Text is a file's content split into lines, free of byte order mark, carriage
+// returns, and the NUL or Ctrl-Z padding that old systems leave at the end.
+type Text struct {
+	lines [][]byte
+}
+
+// NewText splits data into lines at LF, CRLF or a lone CR. UTF-16 with a byte
+// order mark is converted. It refuses an empty file, binary content and lines
+// longer than MaxLine, each with its own cause. The lines alias data.
+func NewText(data []byte) (*Text, error) {
+	if len(data) == 0 {
+		return nil, refuse(0, "", "file is empty")
+	}
+	data, err := decode(data)
+	if err != nil {
+		return nil, err
+	}
+	data = bytes.TrimRight(data, "\x00\x1a")
+	if err := refuseBinary(data); err != nil {
+		return nil, err
+	}
+	t := &Text{lines: splitLines(data)}
+	for i, l := range t.lines {
+		if len(l) > MaxLine {
+			return nil, refuse(i+1, "", "line of %d bytes is longer than the limit of %d", len(l), MaxLine)
+		}
+	}
+	if len(bytes.TrimSpace(data)) == 0 {
+		return nil, refuse(0, "", "file holds only blanks")
+	}
+	return t, nil
+}
+
+// Len returns the number of lines.
+func (t *Text) Len() int { return len(t.lines) }
+
+// Line returns line n, counted from 1, as text; "" past the end.
+func (t *Text) Line(n int) string { return string(t.Bytes(n)) }
+
+// Bytes returns line n, counted from 1; nil past the end. The caller must not
+// change it.
+func (t *Text) Bytes(n int) []byte {
+	if n < 1 || n > len(t.lines) {
+		return nil
+	}
+	return t.lines[n-1]
+}
+
+func decode(data []byte) ([]byte, error) {
+	switch {
+	case bytes.HasPrefix(data, []byte("\xef\xbb\xbf")):
+		return data[3:], nil
+	case bytes.HasPrefix(data, []byte("\xff\xfe")):
+		return fromUTF16(data[2:], binary.LittleEndian), nil
+	case bytes.HasPrefix(data, []byte("\xfe\xff")):
+		return fromUTF16(data[2:], binary.BigEndian), nil
+	case looksUTF16(data):
+		return nil, refuse(0, "", "file looks like UTF-16 without a byte order mark; save it as UTF-8")
+	}
+	return data, nil
+}
+
+func fromUTF16(data []byte, order binary.ByteOrder) []byte {
+	units := make([]uint16, len(data)/2)
+	for i := range units {
+		units[i] = order.Uint16(data[2*i:])
+	}
+	var out []byte
+	for _, r := range utf16.Decode(units) {
+		out = utf8.AppendRune(out, r)
+	}
+	return out
+}
+
+// looksUTF16 reports whether every second byte of the head is NUL, as in ASCII
+// text stored two bytes a character.
+func looksUTF16(data []byte) bool {
+	head := data[:min(len(data), 512)]
+	if len(head) < 16 {
+		return false
+	}
+	var nul [2]int
+	for i, b := range head {
+		if b == 0 {
+			nul[i%2]++
+		}
+	}
+	half := len(head) / 2
+	return max(nul[0], nul[1]) > half*9/10 && min(nul[0], nul[1]) < half/10
+}
+
+// refuseBinary looks at the first 4 KiB and refuses NUL bytes or more than 5 %
+// control characters, and any NUL further on.
+func refuseBinary(data []byte) error {
+	head := data[:min(len(data), 4096)]
+	control := 0
+	for _, b := range head {
+		if b < 0x20 && b != '\t' && b != '\n' && b != '\r' && b != '\f' {
+			control++
+		}
+	}
+	if bytes.IndexByte(head, 0) >= 0 || control*20 > len(head) {
+		return refuse(0, "", "file is binary, not a text record")
+	}
+	if i := bytes.IndexByte(data, 0); i >= 0 {
+		line := 1 + bytes.Count(data[:i], []byte("\n"))
+		return refuse(line, "", "NUL byte in the text: the file is damaged")
+	}
+	return nil
+}
+
+func splitLines(data []byte) [][]byte {
+	lines := make([][]byte, 0, bytes.Count(data, []byte("\n"))+1)
+	for len(data) > 0 {
+		i := bytes.IndexAny(data, "\n\r")
+		if i < 0 {
+			return append(lines, data)
+		}
+		lines = append(lines, data[:i])
+		if data[i] == '\r' && i+1 < len(data) && data[i+1] == '\n' {
+			i++
+		}
+		data = data[i+1:]
+	}
+	return lines
+}

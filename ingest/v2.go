@@ -1,0 +1,338 @@
+package ingest
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"regexp"
+	"strings"
+)
+
+// californiaV2 reads the corrected accelerograms (V2) of the Californian
+// fixed-width text layout, of one channel or of several after one another: 25
+// lines of text, 100 integers as 16I5, 100 reals as 8F10, then blocks of
+// acceleration, velocity and displacement, of which only the first is kept. It
+// knows the response spectra (V3) that are distributed beside them and passes
+// them over, and it refuses uncorrected files (V1) and the New Zealand layout
+// that opens with the same words.
+//
+// Sources: files as distributed by the California Geological Survey, of 1979 to
+// 2022; the reports of the California Division of Mines and Geology that
+// describe the layout were not consulted.
+type californiaV2 struct{}
+
+// The fixed parts of a V2 channel.
+const (
+	v2TextLines = 25
+	v2Positions = 100 // integers and reals alike
+	v2Null      = -999
+)
+
+var (
+	v2Integers = fieldLayout{perLine: 16, width: 5}
+	v2Reals    = fieldLayout{perLine: 8, width: 10, decimals: pointExplicit}
+)
+
+// The first words of the files of this family, in lower case.
+const (
+	v2Opening      = "corrected accelerogram"
+	v1Opening      = "uncorrected accelerogram"
+	spectraOpening = "response and fourier amplitude spectra"
+)
+
+// Name returns "california-v2".
+func (californiaV2) Name() string { return "california-v2" }
+
+// Sniff looks at the first words.
+func (californiaV2) Sniff(t *Text) string {
+	first := strings.ToLower(words(t, nextText(t, 1)))
+	if strings.Contains(first, "(format v") {
+		return ""
+	}
+	for _, opening := range []string{v2Opening, v1Opening, spectraOpening} {
+		if opens(first, opening) {
+			return "first line begins with " + strings.ToUpper(opening[:1]) + opening[1:]
+		}
+	}
+	return ""
+}
+
+// opens reports whether a heading in lower case begins with the given words,
+// whatever blanks are before them.
+func opens(heading, opening string) bool {
+	return strings.HasPrefix(strings.TrimSpace(heading), opening)
+}
+
+// Parse reads all channels of the file.
+func (californiaV2) Parse(t *Text, hints Hints) ([]Channel, error) {
+	line := nextText(t, 1)
+	first := strings.ToLower(words(t, line))
+	switch {
+	case opens(first, spectraOpening):
+		return nil, &NotMotionError{Reason: "response and Fourier spectra, not a time series"}
+	case opens(strings.ToLower(words(t, line+1)), "site"):
+		return nil, refuse(line+1, "", "accelerogram in the New Zealand layout, which is not read")
+	case opens(first, v1Opening):
+		return nil, refuse(line, "", "uncorrected accelerogram (V1 layout), which is not read; use the corrected V2 file")
+	}
+	var channels []Channel
+	for line <= t.Len() {
+		if !opens(strings.ToLower(words(t, line)), v2Opening) {
+			return nil, refuse(line, "", "text %s after the end of a channel, expected the heading of another", found(words(t, line)))
+		}
+		c, next, err := readV2Channel(t, line, hints)
+		if err != nil {
+			return nil, err
+		}
+		channels = append(channels, *c)
+		line = nextText(t, next)
+	}
+	return channels, nil
+}
+
+// readV2Channel reads the channel whose first text line is given and returns it
+// with the line after it.
+func readV2Channel(t *Text, line int, hints Hints) (*Channel, int, error) {
+	first, err := findV2Integers(t, line)
+	if err != nil {
+		return nil, 0, err
+	}
+	integers, next, err := readHeader(t, first, v2Positions, v2Integers, "integer", v2Null)
+	if err != nil {
+		return nil, 0, err
+	}
+	reals, next, err := readHeader(t, next, v2Positions, v2Reals, "real", v2Null)
+	if err != nil {
+		return nil, 0, err
+	}
+	h := &v2Heading{text: t, first: line}
+	c := &Channel{Processing: ProcessingCorrected}
+	h.describe(c, integers, reals)
+	integers.warnGaps(c)
+	reals.warnGaps(c)
+	next, err = readV2Blocks(t, next, c, h, integers, reals, hints)
+	return c, next, err
+}
+
+// findV2Integers returns the line of the integer header, 25 lines after the
+// first text line.
+func findV2Integers(t *Text, line int) (int, error) {
+	at := line + v2TextLines
+	switch {
+	case at > t.Len():
+		return 0, refuse(t.Len(), "text header", "truncated: announced %d lines, found %d", v2TextLines, t.Len()-line+1)
+	case isV2IntegerLine(t.Bytes(at - 1)):
+		return 0, refuse(at-1, "text header", "integers after fewer than %d lines of text", v2TextLines)
+	case !isV2IntegerLine(t.Bytes(at)):
+		return 0, refuse(at, "integer header", "expected 16 integers of 5 characters after %d lines of text, found %s", v2TextLines, found(words(t, at)))
+	}
+	return at, nil
+}
+
+// isV2IntegerLine reports whether b is a full line of 16I5.
+func isV2IntegerLine(b []byte) bool {
+	if len(b) <= 15*v2Integers.width || len(bytes.TrimSpace(b)) < 15 {
+		return false
+	}
+	for _, c := range b {
+		if (c < '0' || c > '9') && c != ' ' && c != '-' && c != '*' {
+			return false
+		}
+	}
+	return true
+}
+
+// v2Block is what the count line of a block says.
+type v2Block struct {
+	quantity string // "accel", "veloc", "displ"
+	count    int
+	step     printed
+	unit     string
+	layout   fieldLayout
+}
+
+var (
+	v2CountLine  = regexp.MustCompile(`(?i)^\s*(\S+)\s*points of\s+(accel|veloc|displ)\w*\s+data equally spaced at\s*(\S+)\s*sec(.*)$`)
+	v2UnitText   = regexp.MustCompile(`(?i)(?:\bunits:\s*|\bin\s+)([^\s()]+)`)
+	v2FormatText = regexp.MustCompile(`(?i)\(\s*\d*\s*[FEDG]\s*\d+[^()]*\)`)
+)
+
+// readV2Count reads a count line; it returns nil where the line is none.
+func readV2Count(t *Text, line int) (*v2Block, error) {
+	m := v2CountLine.FindStringSubmatch(words(t, line))
+	if m == nil {
+		return nil, nil
+	}
+	b := &v2Block{quantity: strings.ToLower(m[2]), layout: v2Reals}
+	field := b.quantity + " count"
+	n, ok := valueCount(m[1])
+	if !ok {
+		return nil, refuse(line, field, "%s is not a count of values", found(m[1]))
+	}
+	b.count = n
+	var err error
+	if b.step, err = newPrinted(m[3], line, "dt"); err != nil {
+		return nil, err
+	}
+	if u := v2UnitText.FindStringSubmatch(m[4]); u != nil {
+		b.unit = strings.TrimRight(u[1], ".,")
+	}
+	if f := v2FormatText.FindString(m[4]); f != "" {
+		if b.layout, err = parseFortran(f); err != nil {
+			return nil, refuse(line, field, "%w", err)
+		}
+		// The number of decimals differs between the files' formats and what
+		// they print; the printed point is what counts.
+		b.layout.decimals = pointExplicit
+	}
+	return b, nil
+}
+
+// readV2Blocks reads the blocks from the given line on, keeps the acceleration
+// in c, and returns the line after the end line.
+func readV2Blocks(t *Text, line int, c *Channel, h *v2Heading, integers, reals *numericHeader, hints Hints) (int, error) {
+	announced := 0
+	for {
+		line = nextText(t, line)
+		if line > t.Len() || isEndLine(bytes.TrimSpace(t.Bytes(line))) || opens(strings.ToLower(words(t, line)), v2Opening) {
+			break
+		}
+		block, err := readV2Count(t, line)
+		switch {
+		case err != nil:
+			return 0, err
+		case block == nil && announced > 0 && startsNumber(bytes.TrimSpace(t.Bytes(line))):
+			return 0, refuse(line, "", "more values than the %d announced", announced)
+		case block == nil:
+			return 0, refuse(line, "", "expected the count line of a block or the end line, found %s", found(words(t, line)))
+		case block.quantity != "accel":
+			announced = block.count
+			if line, err = block.layout.skip(t, line+1, block.count, block.quantity); err != nil {
+				return 0, err
+			}
+			continue
+		case c.Acceleration != nil:
+			return 0, refuse(line, "accel", "second block of acceleration in one channel")
+		}
+		if err := block.settle(c, h, line, integers, reals, hints); err != nil {
+			return 0, err
+		}
+		announced, c.Line = block.count, line+1
+		if c.Acceleration, line, err = block.layout.series(t, line+1, block.count, "accel"); err != nil {
+			return 0, err
+		}
+		scale(c.Acceleration, c.UnitMPS2)
+	}
+	if c.Acceleration == nil {
+		return 0, refuse(min(line, t.Len()), "accel", "the channel has no block of acceleration")
+	}
+	if line > t.Len() || !isEndLine(bytes.TrimSpace(t.Bytes(line))) {
+		c.Warnings = append(c.Warnings, "the channel has no end line")
+		return line, nil
+	}
+	return line + 1, nil
+}
+
+// settle checks the count line of the acceleration against the headers and
+// takes step, unit and peak from them.
+func (b *v2Block) settle(c *Channel, h *v2Heading, line int, integers, reals *numericHeader, hints Hints) error {
+	if err := b.checkCount(h, line, integers); err != nil {
+		return err
+	}
+	step, err := b.chooseStep(h, reals)
+	if err != nil {
+		return err
+	}
+	c.StepS = step.value
+	if err := checkStep(step.value, step.line, hints); err != nil {
+		return err
+	}
+	unit, err := ParseUnit(b.unit)
+	if err != nil {
+		return refuse(line, "unit", "%w", err)
+	}
+	if unit.MPS2 != 0.01 {
+		return refuse(line, "unit", "acceleration is in %s; files of this layout are in cm/s2", unit.Name)
+	}
+	if unit, _, err = chooseUnit(statement{b.unit, line}, hints); err != nil {
+		return err
+	}
+	c.Unit, c.UnitMPS2 = unit.Name, unit.MPS2
+	if peak := reals.at(66); peak.Value != 0 {
+		c.HeaderPeak = Known(peak.Value * unit.MPS2)
+	}
+	return nil
+}
+
+// checkCount compares the block's count with the header's integers 53 and 64
+// and with text line 16. Zero and -999 say nothing, and neither does a field of
+// five characters that a long record overflows.
+func (b *v2Block) checkCount(h *v2Heading, line int, integers *numericHeader) error {
+	if b.count < 1 {
+		return refuse(line, "accel count", "%d values announced", b.count)
+	}
+	for _, i := range []int{53, 64} {
+		if n := integers.positive(i); n.Known && n.Value != float64(b.count) {
+			return refuse(line, "accel count", "%d values announced, %s in line %d says %g",
+				b.count, integers.what(i), integers.line(i), n.Value)
+		}
+	}
+	if n, at := h.points(); at > 0 && n != b.count {
+		return refuse(line, "accel count", "%d values announced, line %d says %d", b.count, at, n)
+	}
+	return nil
+}
+
+// chooseStep returns the time step of the count line, real 61 or text line 17,
+// whichever is printed to most digits. All that are stated must agree within
+// what their digits show.
+func (b *v2Block) chooseStep(h *v2Heading, reals *numericHeader) (printed, error) {
+	if !(b.step.value > 0) {
+		return printed{}, refuse(b.step.line, "dt", "time step %g s is not positive", b.step.value)
+	}
+	stated := []printed{b.step}
+	if n := reals.at(61); n.Known && n.Value != 0 {
+		p, err := newPrinted(string(reals.field(61)), reals.line(61), "dt")
+		if err != nil {
+			return printed{}, err
+		}
+		stated = append(stated, p)
+	}
+	if p, ok := h.interval(); ok {
+		stated = append(stated, p)
+	}
+	best := stated[0]
+	for _, p := range stated[1:] {
+		if !p.agrees(b.step) {
+			return printed{}, refuse(b.step.line, "dt", "time step %g s, but line %d says %g s", b.step.value, p.line, p.value)
+		}
+		if p.half < best.half {
+			best = p
+		}
+	}
+	if !(best.value > 0) || math.IsInf(best.value, 0) {
+		return printed{}, refuse(best.line, "dt", "time step %g s is not positive", best.value)
+	}
+	return best, nil
+}
+
+// valueCount reads a count of values. Anything above 2³¹ is no count.
+func valueCount(s string) (int, bool) {
+	v, ok := parseNumber([]byte(s))
+	if !ok || v < 0 || v >= 1<<31 || v != math.Trunc(v) || strings.Trim(s, "0123456789") != "" {
+		return 0, false
+	}
+	return int(v), true
+}
+
+// scale multiplies x by factor.
+func scale(x []float64, factor float64) {
+	for i := range x {
+		x[i] *= factor
+	}
+}
+
+// warn notes what a person should know of the channel.
+func (c *Channel) warn(format string, args ...any) {
+	c.Warnings = append(c.Warnings, fmt.Sprintf(format, args...))
+}
