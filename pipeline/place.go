@@ -1,0 +1,130 @@
+package pipeline
+
+import (
+	"context"
+	"fmt"
+	"path"
+	"path/filepath"
+	"strings"
+	"time"
+
+	"swaybook/db"
+	"swaybook/ingest"
+)
+
+// startTolerance is how far apart the first samples of one record's components
+// may be. Recorders start all channels together, headers round to a second.
+const startTolerance = time.Second
+
+// placement is where a channel goes: the record's code, the channel's role, and
+// the new roles of what the record holds already.
+type placement struct {
+	code      string
+	newRecord bool
+	role      string
+	renamed   map[string]string
+}
+
+// place finds the record for a channel of the file. Same event, station and
+// instrument make one record, unless the channel starts at another time (a
+// second trigger) or its direction is taken by another sensor of the same
+// file family; such a channel gets a record of its own, whose code says why. A
+// channel that another version of itself has taken the place of is an error.
+func place(ctx context.Context, tx *db.Tx, src db.Source, stem string, c *ingest.Channel) (placement, error) {
+	code, _ := ingest.RecordID(c, stem)
+	r, _, err := tx.FindRecord(ctx, code)
+	if err != nil {
+		return placement{}, err
+	}
+	if startsApart(r.Start, c.Start) {
+		code += c.Start.UTC().Format("_T150405")
+		if r, _, err = tx.FindRecord(ctx, code); err != nil {
+			return placement{}, err
+		}
+	}
+	p, rival := join(code, r, c)
+	if rival == nil {
+		return p, nil
+	}
+	suffix := apartFrom(*rival, src, c)
+	if suffix == "" {
+		return placement{}, takenError(code, *rival)
+	}
+	code += suffix
+	if r, _, err = tx.FindRecord(ctx, code); err != nil {
+		return placement{}, err
+	}
+	if p, rival = join(code, r, c); rival != nil {
+		return placement{}, takenError(code, *rival)
+	}
+	return p, nil
+}
+
+func takenError(code string, rival db.Component) error {
+	return fmt.Errorf("record %s holds this direction already (%s, from %s): another version of the same channel? Keep one of them",
+		code, rival.Role, rival.SourcePath)
+}
+
+func startsApart(a, b time.Time) bool {
+	return !a.IsZero() && !b.IsZero() && a.Sub(b).Abs() > startTolerance
+}
+
+// join gives the channel a role beside the record's components, or returns the
+// component that has its direction.
+func join(code string, r db.StoredRecord, c *ingest.Channel) (placement, *db.Component) {
+	orientations := make([]ingest.Orientation, 0, len(r.Components)+1)
+	for _, held := range r.Components {
+		orientations = append(orientations, orientationOf(held))
+	}
+	orientations = append(orientations, c.Orientation)
+	if rival := sameDirection(r.Components, c.Orientation); rival != nil {
+		return placement{}, rival
+	}
+	roles := ingest.AssignRoles(orientations)
+	for i, role := range roles {
+		if role == "" {
+			return placement{}, &r.Components[min(i, len(r.Components)-1)]
+		}
+	}
+	p := placement{code: code, newRecord: r.ID == 0, role: roles[len(roles)-1], renamed: map[string]string{}}
+	for i, held := range r.Components {
+		if held.Role != roles[i] {
+			p.renamed[held.Role] = roles[i]
+		}
+	}
+	return p, nil
+}
+
+// sameDirection returns the component that measures exactly the direction o.
+func sameDirection(components []db.Component, o ingest.Orientation) *db.Component {
+	for i, held := range components {
+		h := orientationOf(held)
+		if h.Axis != o.Axis {
+			continue
+		}
+		same := h.Label == o.Label
+		if h.AzimuthDeg.Known && o.AzimuthDeg.Known {
+			same = h.AzimuthDeg.Value == o.AzimuthDeg.Value
+		}
+		if same || o.Axis == ingest.AxisVertical {
+			return &components[i]
+		}
+	}
+	return nil
+}
+
+// apartFrom returns the suffix that tells a channel from its rival where they
+// are different sensors: another channel number in the same format, or, for
+// files without identity, another folder. It is empty where they are versions
+// of one channel.
+func apartFrom(rival db.Component, src db.Source, c *ingest.Channel) string {
+	if c.ChannelCode != "" && rival.SourceFormat == src.Format && rival.Channel != c.ChannelCode {
+		return "_ch" + ingest.Slug(c.ChannelCode)
+	}
+	folder, other := path.Dir(filepath.ToSlash(src.Path)), path.Dir(filepath.ToSlash(rival.SourcePath))
+	anonymous := ingest.EventCode(c) == "" || ingest.StationCode(c) == ""
+	if anonymous && folder != other {
+		return "_" + strings.Trim(ingest.Slug(path.Base(folder)), "-")
+	}
+	return ""
+}

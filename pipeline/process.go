@@ -1,0 +1,220 @@
+package pipeline
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"errors"
+	"path"
+	"path/filepath"
+	"strings"
+	"sync"
+
+	"swaybook/db"
+	"swaybook/ingest"
+	"swaybook/pipeline/spectrum"
+)
+
+// Outcome is what became of a file.
+type Outcome string
+
+// The outcomes of a file.
+const (
+	Stored   Outcome = "stored"
+	Held     Outcome = "held"     // its content is in the store already
+	Skipped  Outcome = "skipped"  // recognised, but no ground acceleration
+	Rejected Outcome = "rejected" // could not be read
+)
+
+// result is one file, read and solved.
+type result struct {
+	source   db.Source
+	stem     string // base name without extension, for identities that no header gives
+	outcome  Outcome
+	reason   string // why it was skipped, or where held content was first read
+	err      error  // why it was rejected
+	channels []solved
+	updates  []update // what the catalogue changes of held content
+}
+
+// solved is one channel with what was computed of it.
+type solved struct {
+	channel ingest.Channel // without samples
+	samples int
+	data    []byte // compressed samples
+	digest  string
+	spectra db.Spectra
+}
+
+// reader turns files into results. It is shared by the workers.
+type reader struct {
+	store     Store
+	catalogue *ingest.Catalogue
+	own       map[string]string // absolute path to reason
+	hints     ingest.Hints
+	solvers   *solvers
+}
+
+func newReader(store Store, opts Options, grid db.Grid) *reader {
+	r := &reader{
+		store: store, catalogue: opts.Catalogue, own: map[string]string{}, hints: opts.Hints,
+		solvers: &solvers{grid: grid, byStep: map[float64]*spectrum.Solver{}},
+	}
+	for name, reason := range opts.Own {
+		r.own[absolute(name)] = reason
+	}
+	return r
+}
+
+// process reads, recognises, describes and solves one file. What is wrong with
+// the file is part of the result; an error is the store's or the context's.
+func (r *reader) process(ctx context.Context, file ingest.Found) (result, error) {
+	res := result{source: db.Source{Path: file.Path}, stem: stemOf(file.Path)}
+	if reason := r.skipReason(file); reason != "" {
+		return res.skipped(reason), ctx.Err()
+	}
+	data, err := r.read(file, &res)
+	if err != nil {
+		return res.rejected(err), ctx.Err()
+	}
+	first, held, err := r.store.Held(ctx, res.source.SHA256)
+	if err != nil {
+		return res, err
+	}
+	if held {
+		return r.held(ctx, file, res, first)
+	}
+	return r.parse(file, data, res), ctx.Err()
+}
+
+func (r *reader) skipReason(file ingest.Found) string {
+	if reason := r.own[absolute(file.Path)]; reason != "" {
+		return reason
+	}
+	return ingest.SkipByName(path.Base(filepath.ToSlash(file.Path)))
+}
+
+// absolute is the path in the one form in which two can be compared; a path
+// that has none stays as it is.
+func absolute(name string) string {
+	if abs, err := filepath.Abs(name); err == nil {
+		return abs
+	}
+	return name
+}
+
+// read loads the file and completes the description of the source.
+func (r *reader) read(file ingest.Found, res *result) ([]byte, error) {
+	if file.Err != nil {
+		return nil, file.Err
+	}
+	data, info, err := ingest.Read(file.Path)
+	if err != nil {
+		return nil, err
+	}
+	sum := sha256.Sum256(data)
+	res.source.SHA256 = hex.EncodeToString(sum[:])
+	res.source.Size = int64(len(data))
+	res.source.Modified = info.ModTime()
+	return data, nil
+}
+
+// parse reads the channels, applies the catalogue, and solves each channel.
+func (r *reader) parse(file ingest.Found, data []byte, res result) result {
+	hints := r.hints
+	if r.catalogue != nil {
+		hints = r.catalogue.Hints(file.Rel, hints)
+	}
+	format, channels, err := ingest.Parse(file.Path, data, hints)
+	res.source.Format = format
+	if skip, ok := errors.AsType[*ingest.NotMotionError](err); ok {
+		return res.skipped(skip.Reason)
+	}
+	if err != nil {
+		return res.rejected(err)
+	}
+	res.outcome = Stored
+	for i := range channels {
+		r.describe(file, res.stem, &channels[i])
+		s, err := r.solve(channels[i])
+		if err != nil {
+			return res.rejected(&ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
+		}
+		res.channels = append(res.channels, s)
+	}
+	return res
+}
+
+// describe completes what the file's content says by the file's name, where it
+// gives no direction, and by the catalogue, which has the last word.
+func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) {
+	if c.Orientation.Axis == ingest.AxisUnknown {
+		_, c.Orientation = ingest.SplitStem(stem)
+	}
+	if r.catalogue != nil {
+		r.catalogue.Apply(file.Rel, c)
+	}
+}
+
+func (r *reader) solve(c ingest.Channel) (solved, error) {
+	solver, err := r.solvers.get(c.StepS)
+	if err != nil {
+		return solved{}, err
+	}
+	sd := solver.SD(nil, c.Acceleration)
+	pga, pgv, pgd := spectrum.Peaks(c.StepS, c.Acceleration)
+	s := solved{channel: c, samples: len(c.Acceleration)}
+	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
+	s.channel.Acceleration = nil
+	s.spectra.Measures = map[string]float64{db.MeasurePGA: pga, db.MeasurePGV: pgv, db.MeasurePGD: pgd}
+	for n := len(r.solvers.grid.PeriodsS); len(sd) > 0; sd = sd[n:] {
+		s.spectra.SD = append(s.spectra.SD, sd[:n])
+	}
+	return s, nil
+}
+
+func (res result) skipped(reason string) result {
+	res.outcome, res.reason = Skipped, reason
+	return res
+}
+
+func (res result) rejected(err error) result {
+	res.outcome, res.err = Rejected, err
+	return res
+}
+
+func stemOf(file string) string {
+	base := path.Base(filepath.ToSlash(file))
+	return strings.TrimSuffix(base, path.Ext(base))
+}
+
+// solvers keeps the solver of each time step in use.
+type solvers struct {
+	grid   db.Grid
+	mu     sync.Mutex
+	byStep map[float64]*spectrum.Solver
+}
+
+// maxSolvers bounds what odd time steps may cost: an archive has a handful of
+// steps, and a solver of the default grid takes a few hundred kilobytes.
+const maxSolvers = 64
+
+// get returns the solver for the step, with the grid's dampings outside and its
+// periods inside.
+func (s *solvers) get(stepS float64) (*spectrum.Solver, error) {
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	if solver, ok := s.byStep[stepS]; ok {
+		return solver, nil
+	}
+	grid := spectrum.Grid{PeriodsS: s.grid.PeriodsS, Dampings: s.grid.Dampings}
+	solver, err := spectrum.NewSolver(spectrum.NigamJennings, stepS, grid.Oscillators())
+	if err != nil {
+		return nil, err
+	}
+	if len(s.byStep) >= maxSolvers {
+		clear(s.byStep)
+	}
+	s.byStep[stepS] = solver
+	return solver, nil
+}

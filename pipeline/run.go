@@ -1,0 +1,160 @@
+package pipeline
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"runtime"
+	"time"
+
+	"golang.org/x/sync/errgroup"
+
+	"swaybook/db"
+	"swaybook/ingest"
+)
+
+// Store is what a run needs of the store; *db.Store is one.
+type Store interface {
+	Held(ctx context.Context, sha256 string) (path string, ok bool, err error)
+	View(ctx context.Context, f func(*db.Snapshot) error) error
+	Update(ctx context.Context, f func(*db.Tx) error) error
+}
+
+// Options say what a run shall do. The zero value of a field asks for its
+// default.
+type Options struct {
+	Paths []string
+	// Catalogue joins or overrides metadata; nil for none.
+	Catalogue *ingest.Catalogue
+	// Own are the run's own files, which are skipped where they lie among the
+	// records: path to reason.
+	Own   map[string]string
+	Hints ingest.Hints // what the user states for files that are silent
+	// Grid is the grid asked for. An empty list asks for the store's own, or
+	// for the default in a new store.
+	Grid    db.Grid
+	Workers int       // files in work at the same time; default GOMAXPROCS
+	Program string    // name and version, kept with the run
+	Started time.Time // when the run began
+	// Clock returns the time; it paces batches and dates the run's end.
+	Clock func() time.Time
+	// Progress is called by the writer after each file, in path order; may be
+	// nil.
+	Progress func(Progress)
+}
+
+// Progress is one file done.
+type Progress struct {
+	Done, Total int
+	Components  int // stored so far
+	File        FileReport
+}
+
+// Run ingests the files under opts.Paths into the store. The summary tells what
+// happened to every file; it is valid beside an error too, for what had been
+// committed by then. A cancelled context ends the run after the batch in hand;
+// the error is then the context's.
+func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
+	opts = withDefaults(opts)
+	files, err := ingest.Discover(opts.Paths)
+	if err != nil {
+		return Summary{}, err
+	}
+	run, err := begin(ctx, store, opts)
+	if err != nil {
+		return Summary{}, err
+	}
+	w := newWriter(store, run, opts, len(files))
+
+	group, ctx := errgroup.WithContext(ctx)
+	jobs := make(chan job)
+	queue := make(chan job, queueLength*opts.Workers)
+	group.Go(func() error { return dispatch(ctx, files, queue, jobs) })
+	for range opts.Workers {
+		group.Go(func() error { return work(ctx, run.reader, jobs) })
+	}
+	group.Go(func() error { return w.write(ctx, queue) })
+	err = group.Wait()
+	return w.finish(ctx, err)
+}
+
+// queueLength is how many files per worker may be read and solved ahead of the
+// writer. A few smooth out a large file beside small ones; more would only cost
+// memory.
+const queueLength = 4
+
+// job is one file on its way; the worker answers on result, which holds one
+// value so that it never waits for the writer.
+type job struct {
+	file   ingest.Found
+	result chan result
+}
+
+// dispatch offers the files to the workers, and in the same order to the
+// writer. The bounded queue holds it back where the writer is behind.
+func dispatch(ctx context.Context, files []ingest.Found, queue, jobs chan<- job) error {
+	defer close(queue)
+	defer close(jobs)
+	for _, f := range files {
+		j := job{file: f, result: make(chan result, 1)}
+		for _, c := range []chan<- job{queue, jobs} {
+			select {
+			case c <- j:
+			case <-ctx.Done():
+				return ctx.Err()
+			}
+		}
+	}
+	return nil
+}
+
+func work(ctx context.Context, r *reader, jobs <-chan job) error {
+	for j := range jobs {
+		res, err := r.process(ctx, j.file)
+		if err != nil {
+			return err
+		}
+		j.result <- res
+	}
+	return ctx.Err()
+}
+
+func withDefaults(opts Options) Options {
+	if opts.Workers <= 0 {
+		opts.Workers = runtime.GOMAXPROCS(0)
+	}
+	if opts.Progress == nil {
+		opts.Progress = func(Progress) {}
+	}
+	return opts
+}
+
+// state is what a run keeps from its beginning to its end.
+type state struct {
+	id         int64
+	generation db.Generation
+	reader     *reader
+}
+
+// begin opens the run's entry in the store and settles the generation.
+func begin(ctx context.Context, store Store, opts Options) (state, error) {
+	var s state
+	err := store.Update(ctx, func(tx *db.Tx) error {
+		var err error
+		if s.generation, err = settleGeneration(ctx, tx, opts.Grid); err != nil {
+			return err
+		}
+		s.id, err = tx.StartRun(ctx, "ingest", opts.Program, opts.Started)
+		return err
+	})
+	if err != nil {
+		return state{}, fmt.Errorf("begin run: %w", err)
+	}
+	s.reader = newReader(store, opts, s.generation.Grid)
+	return s, nil
+}
+
+// interrupted reports whether a run ended because somebody stopped it.
+func interrupted(err error) bool {
+	return errors.Is(err, context.Canceled) || errors.Is(err, context.DeadlineExceeded)
+}

@@ -1,0 +1,328 @@
+package pipeline
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"math/rand/v2"
+	"os"
+	"path/filepath"
+	"reflect"
+	"runtime"
+	"strings"
+	"testing"
+	"time"
+
+	"swaybook/db"
+	"swaybook/ingest"
+)
+
+// testGrid is small, so that the tests are about the pipeline.
+var testGrid = db.Grid{PeriodsS: []float64{0.1, 0.5, 1}, Dampings: []float64{0.02, 0.05}}
+
+// at2 is an invented component in the .AT2 layout, in g.
+func at2(event, station, component string, seed uint64) string {
+	const n = 600
+	rng := rand.New(rand.NewPCG(seed, 3))
+	var b strings.Builder
+	fmt.Fprintf(&b, "INVENTED RECORD\n%s, 3/12/2026, %s, %s\nACCELERATION TIME SERIES IN UNITS OF G\nNPTS=  %d, DT=   .0100 SEC\n", event, station, component, n)
+	for i := range n {
+		fmt.Fprintf(&b, "%15.7E", 0.1*rng.NormFloat64())
+		if i%5 == 4 {
+			b.WriteByte('\n')
+		}
+	}
+	return b.String()
+}
+
+// archive writes records of three components for so many stations, with a
+// damaged file, a readme and a copy among them.
+func archive(t *testing.T, stations int) string {
+	t.Helper()
+	dir := t.TempDir()
+	for s := range stations {
+		for c, component := range []string{"000", "090", "UP"} {
+			name := fmt.Sprintf("EV1_ST%02d%s.AT2", s, component)
+			put(t, dir, name, at2("Invented", fmt.Sprintf("Site %02d", s), component, uint64(10*s+c)))
+		}
+	}
+	put(t, dir, "README.txt", "Invented records.\n")
+	put(t, dir, "sub/copy.txt", at2("Invented", "Site 00", "000", 0))
+	put(t, dir, "bad/cut.AT2", at2("Invented", "Site 99", "000", 7)[:3000])
+	put(t, dir, "bad/empty.AT2", "")
+	return dir
+}
+
+func put(t *testing.T, dir, name, text string) {
+	t.Helper()
+	path := filepath.Join(dir, filepath.FromSlash(name))
+	if err := os.MkdirAll(filepath.Dir(path), 0o755); err != nil {
+		t.Fatal(err)
+	}
+	if err := os.WriteFile(path, []byte(text), 0o644); err != nil {
+		t.Fatal(err)
+	}
+}
+
+func newStore(t *testing.T) *db.Store {
+	t.Helper()
+	s, err := db.Create(t.Context(), filepath.Join(t.TempDir(), "store.db"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() { s.Close() })
+	return s
+}
+
+func options(paths ...string) Options {
+	return Options{Paths: paths, Grid: testGrid, Program: "test", Started: time.Now(), Clock: time.Now}
+}
+
+func run(t *testing.T, store Store, opts Options) Summary {
+	t.Helper()
+	s, err := Run(t.Context(), store, opts)
+	if err != nil {
+		t.Fatal(err)
+	}
+	s.Seconds = 0
+	return s
+}
+
+// dump is all that a store says of its components and spectra, without the
+// ids, which nobody sees.
+func dump(t *testing.T, store *db.Store) []string {
+	t.Helper()
+	var out []string
+	err := store.View(t.Context(), func(v *db.Snapshot) error {
+		components, err := v.Components(t.Context())
+		if err != nil {
+			return err
+		}
+		code := map[int64]string{}
+		wanted := map[db.SpectrumKey]bool{}
+		for _, c := range components {
+			code[c.RecordID] = c.Record.Code
+			wanted[db.SpectrumKey{RecordID: c.RecordID, Role: c.Role}] = true
+			out = append(out, fmt.Sprint(c.Record.Code, c.Role, c.Label, c.AzimuthDeg == nil, c.Record.Siting, filepath.Base(c.SourcePath), c.PGA, c.PGV, c.PGD))
+		}
+		for d := range v.Generation.Grid.Dampings {
+			err := v.Spectra(t.Context(), d, wanted, func(key db.SpectrumKey, sd []float64) error {
+				out = append(out, fmt.Sprint(d, code[key.RecordID], key.Role, sd))
+				return nil
+			})
+			if err != nil {
+				return err
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return out
+}
+
+func TestRunStoresAndHolds(t *testing.T) {
+	dir, store := archive(t, 4), newStore(t)
+	got := run(t, store, options(dir))
+	want := Summary{Files: 16, Stored: 12, StoredFiles: 12, Held: 1, Skipped: 1, Rejected: 2, Records: 4}
+	if got != want {
+		t.Errorf("first run = %+v, want %+v", got, want)
+	}
+	before := dump(t, store)
+	got = run(t, store, options(dir))
+	want = Summary{Files: 16, Held: 13, Skipped: 1, Rejected: 2}
+	if got != want {
+		t.Errorf("second run = %+v, want %+v", got, want)
+	}
+	if after := dump(t, store); !reflect.DeepEqual(before, after) {
+		t.Error("the second run changed the store")
+	}
+	rejections, err := store.Rejections(t.Context())
+	if err != nil || len(rejections) != 2 {
+		t.Fatalf("rejections = %v, %v", rejections, err)
+	}
+	for _, r := range rejections {
+		if !strings.Contains(r.Path, "bad") || r.Cause == "" {
+			t.Errorf("rejection = %+v", r)
+		}
+	}
+}
+
+// A damaged file that is mended is stored and its rejection forgotten.
+func TestAMendedFileLosesItsRejection(t *testing.T) {
+	dir, store := archive(t, 1), newStore(t)
+	run(t, store, options(dir))
+	put(t, dir, "bad/cut.AT2", at2("Invented", "Site 99", "000", 7))
+	if got := run(t, store, options(dir)); got.Stored != 1 || got.Rejected != 1 {
+		t.Errorf("run = %+v", got)
+	}
+	if rejections, err := store.Rejections(t.Context()); err != nil || len(rejections) != 1 {
+		t.Errorf("rejections = %v, %v", rejections, err)
+	}
+}
+
+func TestResultsDependNeitherOnWorkersNorOnOrder(t *testing.T) {
+	dir := archive(t, 6)
+	var want []string
+	for _, workers := range []int{1, 2, 8} {
+		for _, paths := range [][]string{{dir}, {filepath.Join(dir, "sub"), dir, filepath.Join(dir, "EV1_ST03UP.AT2")}} {
+			store := newStore(t)
+			opts := options(paths...)
+			opts.Workers = workers
+			run(t, store, opts)
+			got := dump(t, store)
+			if want == nil {
+				want = got
+			}
+			if !reflect.DeepEqual(got, want) {
+				t.Errorf("%d workers, paths %v: another store", workers, paths)
+			}
+		}
+	}
+}
+
+// failing is a store whose updates fail from the nth on, or which calls a
+// function before each.
+type failing struct {
+	*db.Store
+	updates int
+	before  func(n int) error
+}
+
+func (f *failing) Update(ctx context.Context, do func(*db.Tx) error) error {
+	f.updates++
+	if err := f.before(f.updates); err != nil {
+		return err
+	}
+	return f.Store.Update(ctx, do)
+}
+
+// A run that is stopped keeps whole batches, and the next run finishes the
+// rest, to the same store as an undisturbed one.
+func TestAStoppedRunIsFinishedByTheNext(t *testing.T) {
+	dir := archive(t, 60)
+	undisturbed := newStore(t)
+	run(t, undisturbed, options(dir))
+
+	store := newStore(t)
+	ctx, cancel := context.WithCancel(t.Context())
+	defer cancel()
+	opts := options(dir)
+	opts.Progress = func(Progress) { cancel() } // after the first batch
+	summary, err := Run(ctx, store, opts)
+	if !errors.Is(err, context.Canceled) {
+		t.Fatalf("Run = %v, want Canceled", err)
+	}
+	if summary.Stored == 0 || summary.Stored >= 180 {
+		t.Fatalf("%d components before the stop; the test wants some but not all", summary.Stored)
+	}
+	if held := len(componentsOf(t, store)); held != summary.Stored {
+		t.Errorf("%d components held, the summary says %d", held, summary.Stored)
+	}
+	run(t, store, options(dir))
+	if got, want := dump(t, store), dump(t, undisturbed); !reflect.DeepEqual(got, want) {
+		t.Error("the finished store differs from an undisturbed one")
+	}
+}
+
+func componentsOf(t *testing.T, store *db.Store) (out []db.HeldComponent) {
+	t.Helper()
+	err := store.View(t.Context(), func(v *db.Snapshot) (err error) {
+		out, err = v.Components(t.Context())
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return out
+}
+
+// A store that fails ends the run: no file is read long after it.
+func TestAFailingStoreStopsTheRun(t *testing.T) {
+	full := errors.New("disk full")
+	dir := archive(t, 100)
+	store := &failing{Store: newStore(t), before: func(n int) error {
+		if n > 1 { // the first opens the run
+			return full
+		}
+		return nil
+	}}
+	opts := options(dir)
+	opts.Workers = 1
+	if _, err := Run(t.Context(), store, opts); !errors.Is(err, full) {
+		t.Fatalf("Run = %v, want %v", err, full)
+	}
+	if store.updates > 3 {
+		t.Errorf("%d updates after the store had failed", store.updates)
+	}
+	if held := componentsOf(t, store.Store); len(held) != 0 {
+		t.Errorf("%d components in a store that failed", len(held))
+	}
+	// The driver's own goroutines come and go; ours were waited for.
+	stacks := make([]byte, 1<<20)
+	stacks = stacks[:runtime.Stack(stacks, true)]
+	for _, name := range []string{"pipeline.dispatch", "pipeline.work", "pipeline.(*writer)"} {
+		if bytes.Contains(stacks, []byte(name)) {
+			t.Errorf("%s runs on after the run", name)
+		}
+	}
+}
+
+func TestTheGridIsFixedByTheFirstRun(t *testing.T) {
+	dir, store := archive(t, 1), newStore(t)
+	run(t, store, options(dir))
+	opts := options(dir)
+	opts.Grid.PeriodsS = []float64{0.3}
+	if _, err := Run(t.Context(), store, opts); !errors.Is(err, db.ErrOtherGeneration) || !strings.Contains(err.Error(), "--store") {
+		t.Errorf("another grid: %v", err)
+	}
+	opts.Grid = db.Grid{}
+	run(t, store, opts) // none asked for: the store's own
+	opts.Grid.Dampings = []float64{-1}
+	opts.Grid.PeriodsS = []float64{1}
+	if _, err := Run(t.Context(), newStore(t), opts); err == nil {
+		t.Error("no error for a negative damping")
+	}
+}
+
+func catalogue(t *testing.T, text string) *ingest.Catalogue {
+	t.Helper()
+	c, err := ingest.ReadCatalogue("catalogue.csv", strings.NewReader(text))
+	if err != nil {
+		t.Fatal(err)
+	}
+	return c
+}
+
+// A catalogue that comes later still describes what is held.
+func TestTheCatalogueDescribesHeldRecords(t *testing.T) {
+	dir, store := archive(t, 2), newStore(t)
+	run(t, store, options(dir))
+	opts := options(dir)
+	opts.Catalogue = catalogue(t, "event,station,magnitude,distance_km,vs30_m_s,siting\n"+
+		"invented-20260312,site-01,6.2,17.5,350,structure\n")
+	if got := run(t, store, opts); got.Stored != 0 {
+		t.Errorf("run = %+v", got)
+	}
+	found := 0
+	for _, c := range componentsOf(t, store) {
+		if c.Record.Station.Code != "site-01" {
+			continue
+		}
+		found++
+		if c.Record.DistanceKM == nil || *c.Record.DistanceKM != 17.5 || c.Record.Event.Magnitude == nil || *c.Record.Event.Magnitude != 6.2 ||
+			c.Record.Siting != "structure" || *c.Record.Station.Vs30MPS != 350 {
+			t.Errorf("record = %+v, event %+v", c.Record, c.Record.Event)
+		}
+	}
+	if found != 3 {
+		t.Errorf("%d components of the station, want 3", found)
+	}
+	before := dump(t, store)
+	run(t, store, opts)
+	if !reflect.DeepEqual(before, dump(t, store)) {
+		t.Error("the same catalogue again changed the store")
+	}
+}

@@ -1,0 +1,51 @@
+package pipeline
+
+// Cause is why a file, or one channel of it, was rejected.
+type Cause struct {
+	Line int    `json:"line"` // 0 where the cause is not in one line
+	Text string `json:"cause"`
+}
+
+// FileReport is what became of one file.
+type FileReport struct {
+	Path       string
+	Outcome    Outcome
+	Reason     string // why skipped, or where held content was first read
+	Components int    // stored
+	Records    int    // new with them
+	Causes     []Cause
+	Warnings   []string
+}
+
+// Summary counts what became of the files of a run.
+type Summary struct {
+	Files       int     `json:"files"`        // seen
+	Stored      int     `json:"stored"`       // components
+	StoredFiles int     `json:"stored_files"` // files that gave them
+	Held        int     `json:"held"`         // files whose content was in the store already
+	Skipped     int     `json:"skipped"`      // files that are no ground acceleration
+	Rejected    int     `json:"rejected"`     // files that could not be read, or stored
+	Channels    int     `json:"rejected_channels"`
+	Records     int     `json:"records"` // new records
+	Seconds     float64 `json:"seconds"`
+}
+
+func (s *Summary) add(f FileReport) {
+	s.Files++
+	s.Stored += f.Components
+	s.Records += f.Records
+	switch f.Outcome {
+	case Stored:
+		s.StoredFiles++
+		s.Channels += len(f.Causes)
+	case Held:
+		s.Held++
+	case Skipped:
+		s.Skipped++
+	case Rejected:
+		s.Rejected++
+	}
+}
+
+// Complete reports whether nothing was rejected.
+func (s Summary) Complete() bool { return s.Rejected == 0 && s.Channels == 0 }

@@ -1,0 +1,248 @@
+package pipeline
+
+import (
+	"context"
+	"errors"
+	"time"
+
+	"swaybook/db"
+	"swaybook/ingest"
+)
+
+// A batch is one transaction: large enough that its fixed cost disappears,
+// small enough that a crash loses about a second's work.
+const (
+	batchComponents = 128
+	batchTime       = time.Second
+)
+
+// writer stores results in the order of the queue, batch by batch. It runs in
+// one goroutine.
+type writer struct {
+	store   Store
+	run     state
+	opts    Options
+	total   int
+	done    int
+	summary Summary
+}
+
+func newWriter(store Store, run state, opts Options, total int) *writer {
+	return &writer{store: store, run: run, opts: opts, total: total}
+}
+
+// write takes results until the queue ends or the context does. The batch in
+// hand is stored even then, since its work is done.
+func (w *writer) write(ctx context.Context, queue <-chan job) error {
+	for {
+		batch, last, err := w.collect(ctx, queue)
+		if errStore := w.storeBatch(context.WithoutCancel(ctx), batch); errStore != nil {
+			return errStore
+		}
+		if err != nil || last {
+			return err
+		}
+	}
+}
+
+// collect waits for the results of one batch.
+func (w *writer) collect(ctx context.Context, queue <-chan job) (batch []result, last bool, err error) {
+	began := w.opts.Clock()
+	for components := 0; components < batchComponents && w.opts.Clock().Sub(began) < batchTime; {
+		var j job
+		select {
+		case next, ok := <-queue:
+			if !ok {
+				return batch, true, nil
+			}
+			j = next
+		case <-ctx.Done():
+			return batch, false, ctx.Err()
+		}
+		select {
+		case res := <-j.result:
+			batch = append(batch, res)
+			components += max(1, len(res.channels))
+		case <-ctx.Done():
+			return batch, false, ctx.Err()
+		}
+	}
+	return batch, false, nil
+}
+
+// storeBatch stores the results in one transaction and reports them once it is
+// committed.
+func (w *writer) storeBatch(ctx context.Context, batch []result) error {
+	if len(batch) == 0 {
+		return nil
+	}
+	reports := make([]FileReport, len(batch))
+	err := w.store.Update(ctx, func(tx *db.Tx) error {
+		for i, res := range batch {
+			var err error
+			if reports[i], err = w.storeFile(ctx, tx, res); err != nil {
+				return err
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		return err
+	}
+	for _, report := range reports {
+		w.done++
+		w.summary.add(report)
+		w.opts.Progress(Progress{Done: w.done, Total: w.total, Components: w.summary.Stored, File: report})
+	}
+	return nil
+}
+
+func (w *writer) storeFile(ctx context.Context, tx *db.Tx, res result) (FileReport, error) {
+	report := FileReport{Path: res.source.Path, Outcome: res.outcome, Reason: res.reason}
+	// Two files of equal content may have been read at the same time.
+	if res.outcome == Stored {
+		first, held, err := tx.Held(ctx, res.source.SHA256)
+		if err != nil {
+			return report, err
+		}
+		if held {
+			report.Outcome, report.Reason = Held, "same content as "+first
+			return report, nil
+		}
+	}
+	if err := tx.ForgetRejections(ctx, res.source.Path, keepDigest(res)); err != nil {
+		return report, err
+	}
+	switch res.outcome {
+	case Stored:
+		return w.storeChannels(ctx, tx, res, report)
+	case Held:
+		return report, w.storeUpdates(ctx, tx, res.updates)
+	case Rejected:
+		return w.reject(ctx, tx, res, report, 0, res.err)
+	}
+	return report, nil
+}
+
+// keepDigest names the content whose rejections still hold: those of single
+// channels of a file that is held.
+func keepDigest(res result) string {
+	if res.outcome == Held {
+		return res.source.SHA256
+	}
+	return ""
+}
+
+// storeChannels stores each channel in its record. A file none of whose
+// channels finds a place is rejected.
+func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, report FileReport) (FileReport, error) {
+	sourceID := int64(0)
+	for _, s := range res.channels {
+		p, err := place(ctx, tx, res.source, res.stem, &s.channel)
+		if err != nil {
+			if report, err = w.reject(ctx, tx, res, report, s.channel.Line, err); err != nil {
+				return report, err
+			}
+			continue
+		}
+		if sourceID == 0 {
+			if sourceID, err = tx.AddSource(ctx, res.source, w.run.id); err != nil {
+				return report, err
+			}
+		}
+		if err := w.storeChannel(ctx, tx, s, p, sourceID); err != nil {
+			return report, err
+		}
+		report.Components++
+		if p.newRecord {
+			report.Records++
+		}
+		report.Warnings = append(report.Warnings, s.channel.Warnings...)
+	}
+	if report.Components == 0 {
+		report.Outcome = Rejected
+	}
+	return report, nil
+}
+
+func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, s solved, p placement, sourceID int64) error {
+	recordID, err := tx.PutRecord(ctx, recordOf(s.channel, p.code), false)
+	if err != nil {
+		return err
+	}
+	if err := tx.SetRoles(ctx, recordID, p.renamed); err != nil {
+		return err
+	}
+	c := componentOf(s, p.role)
+	c.SourceID = sourceID
+	return tx.AddComponent(ctx, recordID, c, s.data, s.digest, w.run.generation.ID, s.spectra)
+}
+
+func (w *writer) storeUpdates(ctx context.Context, tx *db.Tx, updates []update) error {
+	for _, u := range updates {
+		if _, err := tx.PutRecord(ctx, u.record, true); err != nil {
+			return err
+		}
+		if !u.turned {
+			continue
+		}
+		if err := turn(ctx, tx, u); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// turn stores a corrected orientation and renews the roles of its record.
+func turn(ctx context.Context, tx *db.Tx, u update) error {
+	c := componentOf(solved{channel: ingest.Channel{Orientation: u.orientation}}, "")
+	if err := tx.SetOrientation(ctx, u.componentID, c); err != nil {
+		return err
+	}
+	r, _, err := tx.FindRecord(ctx, u.record.Code)
+	if err != nil {
+		return err
+	}
+	orientations := make([]ingest.Orientation, len(r.Components))
+	for i, held := range r.Components {
+		orientations[i] = orientationOf(held)
+	}
+	renamed := map[string]string{}
+	for i, role := range ingest.AssignRoles(orientations) {
+		// A direction given twice keeps the roles as they are.
+		if role == "" {
+			return nil
+		}
+		if held := r.Components[i].Role; held != role {
+			renamed[held] = role
+		}
+	}
+	return tx.SetRoles(ctx, r.ID, renamed)
+}
+
+// reject stores one cause against the file.
+func (w *writer) reject(ctx context.Context, tx *db.Tx, res result, report FileReport, line int, cause error) (FileReport, error) {
+	r := db.Rejection{Path: res.source.Path, Line: line, Cause: cause.Error(), SHA256: res.source.SHA256}
+	if pe, ok := errors.AsType[*ingest.ParseError](cause); ok {
+		r.Line, r.Cause = pe.Line, pe.Cause()
+	}
+	report.Causes = append(report.Causes, Cause{Line: r.Line, Text: r.Cause})
+	return report, tx.Reject(ctx, r, w.run.id)
+}
+
+// finish closes the run's entry. The summary counts what was committed.
+func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
+	w.summary.Seconds = w.opts.Clock().Sub(w.opts.Started).Seconds()
+	outcome := "done"
+	switch {
+	case interrupted(err):
+		outcome = "interrupted"
+	case err != nil:
+		outcome = "failed"
+	}
+	ctx = context.WithoutCancel(ctx)
+	errFinish := w.store.Update(ctx, func(tx *db.Tx) error {
+		return tx.FinishRun(ctx, w.run.id, outcome, w.summary, w.opts.Clock())
+	})
+	return w.summary, errors.Join(err, errFinish)
+}
