@@ -1,0 +1,177 @@
+package query
+
+import (
+	"math"
+	"strings"
+
+	"swaybook/db"
+	"swaybook/query/stats"
+)
+
+// attributes is what an expression sees of one motion. An unknown number is
+// NaN, or noYear; an unknown string is empty. The type has no methods, since an
+// expression could call them.
+type attributes struct {
+	Magnitude        float64 `expr:"magnitude"`
+	DistanceKM       float64 `expr:"distance_km"`
+	Vs30MPS          float64 `expr:"vs30_m_s"`
+	DepthKM          float64 `expr:"depth_km"`
+	EventLatitude    float64 `expr:"event_latitude"`
+	EventLongitude   float64 `expr:"event_longitude"`
+	StationLatitude  float64 `expr:"station_latitude"`
+	StationLongitude float64 `expr:"station_longitude"`
+	StepS            float64 `expr:"dt_s"`
+	Samples          int     `expr:"samples"`
+	DurationS        float64 `expr:"duration_s"`
+	PGA              float64 `expr:"pga_g"`
+	PGV              float64 `expr:"pgv_m_s"`
+	PGD              float64 `expr:"pgd_m"`
+	AzimuthDeg       float64 `expr:"azimuth_deg"`
+	LowCutHz         float64 `expr:"low_cut_hz"`
+	HighCutHz        float64 `expr:"high_cut_hz"`
+	Year             int     `expr:"year"`
+
+	Record        string `expr:"record"`
+	Event         string `expr:"event"`
+	EventName     string `expr:"event_name"`
+	MagnitudeType string `expr:"magnitude_type"`
+	Station       string `expr:"station"`
+	Network       string `expr:"network"`
+	StationName   string `expr:"station_name"`
+	Siting        string `expr:"siting"`
+	Instrument    string `expr:"instrument"`
+	Component     string `expr:"component"`
+	Format        string `expr:"format"`
+	Processing    string `expr:"processing"`
+	Source        string `expr:"source"`
+}
+
+// noYear is the year of a record that knows no time.
+const noYear = math.MinInt
+
+// numbers lists the attributes that can be unknown in the sense of an
+// expression: a motion that lacks one which the expression uses is left out.
+var numbers = []struct {
+	name  string
+	known func(*attributes) bool
+}{
+	{"magnitude", func(a *attributes) bool { return isKnown(a.Magnitude) }},
+	{"distance_km", func(a *attributes) bool { return isKnown(a.DistanceKM) }},
+	{"vs30_m_s", func(a *attributes) bool { return isKnown(a.Vs30MPS) }},
+	{"depth_km", func(a *attributes) bool { return isKnown(a.DepthKM) }},
+	{"event_latitude", func(a *attributes) bool { return isKnown(a.EventLatitude) }},
+	{"event_longitude", func(a *attributes) bool { return isKnown(a.EventLongitude) }},
+	{"station_latitude", func(a *attributes) bool { return isKnown(a.StationLatitude) }},
+	{"station_longitude", func(a *attributes) bool { return isKnown(a.StationLongitude) }},
+	{"dt_s", func(a *attributes) bool { return isKnown(a.StepS) }},
+	{"samples", func(*attributes) bool { return true }},
+	{"duration_s", func(a *attributes) bool { return isKnown(a.DurationS) }},
+	{"pga_g", func(a *attributes) bool { return isKnown(a.PGA) }},
+	{"pgv_m_s", func(a *attributes) bool { return isKnown(a.PGV) }},
+	{"pgd_m", func(a *attributes) bool { return isKnown(a.PGD) }},
+	{"azimuth_deg", func(a *attributes) bool { return isKnown(a.AzimuthDeg) }},
+	{"low_cut_hz", func(a *attributes) bool { return isKnown(a.LowCutHz) }},
+	{"high_cut_hz", func(a *attributes) bool { return isKnown(a.HighCutHz) }},
+	{"year", func(a *attributes) bool { return a.Year != noYear }},
+}
+
+// texts lists the attributes that are strings.
+var texts = []string{
+	"record", "event", "event_name", "magnitude_type", "station", "network", "station_name",
+	"siting", "instrument", "component", "format", "processing", "source",
+}
+
+// WhereAttributes lists every attribute that an expression may use, for people.
+func WhereAttributes() string {
+	names := make([]string, len(numbers))
+	for i, n := range numbers {
+		names[i] = n.name
+	}
+	return "numbers " + strings.Join(names, ", ") + "; strings " + strings.Join(texts, ", ")
+}
+
+func isKnown(x float64) bool { return !math.IsNaN(x) }
+
+// componentAttributes describes one stored component.
+func componentAttributes(c *db.HeldComponent) attributes {
+	a := attributes{
+		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
+		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
+		AzimuthDeg: orNaN(c.AzimuthDeg), LowCutHz: orNaN(c.LowCutHz), HighCutHz: orNaN(c.HighCutHz),
+		Component: c.Role, Format: c.SourceFormat, Processing: c.Processing, Source: c.SourcePath,
+	}
+	describeRecord(&a, &c.Record)
+	return a
+}
+
+// duration is the time from the first sample to the last in s.
+func duration(c *db.HeldComponent) float64 { return float64(c.Samples-1) * c.StepS }
+
+func describeRecord(a *attributes, r *db.Record) {
+	a.Record, a.Siting, a.Instrument = r.Code, r.Siting, r.Instrument
+	a.DistanceKM, a.Year = orNaN(r.DistanceKM), year(r)
+	event, station := r.Event, r.Station
+	if event == nil {
+		event = &db.Event{}
+	}
+	if station == nil {
+		station = &db.Station{}
+	}
+	a.Event, a.EventName, a.MagnitudeType = event.Code, event.Name, event.MagnitudeType
+	a.Magnitude, a.DepthKM = orNaN(event.Magnitude), orNaN(event.DepthKM)
+	a.EventLatitude, a.EventLongitude = orNaN(event.LatitudeDeg), orNaN(event.LongitudeDeg)
+	a.Station, a.Network, a.StationName = station.Code, station.Network, station.Name
+	a.Vs30MPS = orNaN(station.Vs30MPS)
+	a.StationLatitude, a.StationLongitude = orNaN(station.LatitudeDeg), orNaN(station.LongitudeDeg)
+}
+
+// year is that of the origin, UTC, or of the record's start where the origin is
+// unknown.
+func year(r *db.Record) int {
+	switch {
+	case r.Event != nil && !r.Event.Origin.IsZero():
+		return r.Event.Origin.UTC().Year()
+	case !r.Start.IsZero():
+		return r.Start.UTC().Year()
+	}
+	return noYear
+}
+
+// pairAttributes describes a horizontal pair as one motion. Peaks are combined
+// as the ordinates are. Of what the components do not share, the less
+// favourable value stands for both: the longer step, the shorter duration, the
+// higher low cut and the lower high cut, unknown where one is. The azimuth is
+// unknown. Strings that differ are joined with " + ".
+func pairAttributes(component Component, first, second *db.HeldComponent) attributes {
+	a, b := componentAttributes(first), componentAttributes(second)
+	a.Component, a.AzimuthDeg = string(component), math.NaN()
+	a.PGA, a.PGV, a.PGD = combine(component, a.PGA, b.PGA), combine(component, a.PGV, b.PGV), combine(component, a.PGD, b.PGD)
+	// The builtins give NaN where either is NaN.
+	a.StepS, a.Samples, a.DurationS = max(a.StepS, b.StepS), min(a.Samples, b.Samples), min(a.DurationS, b.DurationS)
+	a.LowCutHz, a.HighCutHz = max(a.LowCutHz, b.LowCutHz), min(a.HighCutHz, b.HighCutHz)
+	a.Format, a.Processing, a.Source = both(a.Format, b.Format), both(a.Processing, b.Processing), both(a.Source, b.Source)
+	return a
+}
+
+// combine is the ordinate of a pair. It is symmetric, so the order in which
+// components arrive is immaterial.
+func combine(component Component, a, b float64) float64 {
+	if component == ComponentLarger {
+		return max(a, b)
+	}
+	return stats.GeometricMean(a, b)
+}
+
+func both(a, b string) string {
+	if a == b {
+		return a
+	}
+	return a + " + " + b
+}
+
+func orNaN(x *float64) float64 {
+	if x == nil {
+		return math.NaN()
+	}
+	return *x
+}

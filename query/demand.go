@@ -1,0 +1,185 @@
+package query
+
+import (
+	"context"
+	"math/big"
+	"slices"
+
+	"swaybook/db"
+)
+
+// DemandQuestion asks what the motions of a selection demand of a structure.
+type DemandQuestion struct {
+	Selection             // component: ComponentGeomean, siting: SitingGround by default
+	Structure   Structure // see ParseStructure
+	BandWidth   float64   // ratio: the envelope over T·(1±BandWidth) too; 0: none
+	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
+	Method      Method    // anything but the default is computed from samples
+}
+
+// Quantity is one quantity of a demand.
+type Quantity struct {
+	Name      string     // with its unit: sd_m, psv_m_s, psa_g, base_shear_n, base_moment_nm, strain_energy_j
+	Reduction *Reduction // nil where the mass or the height that it needs is unknown
+}
+
+// DemandBand is the envelope over a band of periods: of every motion the
+// largest value in the band, then the statistics of these.
+type DemandBand struct {
+	FromS, ToS float64
+	Quantities []Quantity
+}
+
+// DemandAnswer is the statistics at the structure's period, in the SI units
+// that the quantities name, and in g for PSA.
+type DemandAnswer struct {
+	Selection   SelectionReport
+	Structure   Structure
+	Percentiles []float64
+	Quantities  []Quantity
+	Band        *DemandBand // nil where none was asked for
+}
+
+// demandQuantities gives each quantity of a structure from an SD in m at ω in
+// rad/s, or NaN where the structure does not tell enough.
+//
+//	base shear     = m·A          A = ω²·SD
+//	base moment    = m·A·h
+//	strain energy  = ½·m·V²       V = ω·SD
+//
+// with the mass m at height h over the base. The energy is that of the spring
+// at SD, ½·k·SD² with k = m·ω².
+//
+// Source: A. K. Chopra, Dynamics of Structures, 4th ed., Prentice Hall 2012,
+// section 6.6 (cited from memory).
+var demandQuantities = []struct {
+	name string
+	of   func(s *Structure, sd, omega float64) float64
+}{
+	{"sd_m", func(_ *Structure, sd, omega float64) float64 { return MeasureSD.of(sd, omega) }},
+	{"psv_m_s", func(_ *Structure, sd, omega float64) float64 { return MeasurePSV.of(sd, omega) }},
+	{"psa_g", func(_ *Structure, sd, omega float64) float64 { return MeasurePSA.of(sd, omega) }},
+	{"base_shear_n", baseShear},
+	{"base_moment_nm", func(s *Structure, sd, omega float64) float64 {
+		return baseShear(s, sd, omega) * orNaN(s.HeightM)
+	}},
+	{"strain_energy_j", func(s *Structure, sd, omega float64) float64 {
+		v := MeasurePSV.of(sd, omega)
+		return 0.5 * orNaN(s.MassKG) * v * v
+	}},
+}
+
+func baseShear(s *Structure, sd, omega float64) float64 {
+	return orNaN(s.MassKG) * (sd * omega * omega)
+}
+
+// Ask answers the question from one snapshot of the store. The error is a
+// UsageError for a wrong question and an EmptyError for an empty selection.
+func (q DemandQuestion) Ask(ctx context.Context, store *db.Store) (*DemandAnswer, error) {
+	q, err := q.withDefaults()
+	if err != nil {
+		return nil, err
+	}
+	var answer *DemandAnswer
+	err = store.View(ctx, func(snapshot *db.Snapshot) error {
+		answer, err = q.answer(ctx, snapshot)
+		return err
+	})
+	return answer, err
+}
+
+func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
+	var err error
+	q.Selection, err = q.Selection.withDefaults(ComponentGeomean, SitingGround, statisticsComponents)
+	if err != nil {
+		return q, err
+	}
+	if q.Percentiles, err = checkPercentiles(q.Percentiles); err != nil {
+		return q, err
+	}
+	if err := checkBandWidth(q.BandWidth); err != nil {
+		return q, err
+	}
+	return q, q.Structure.validate()
+}
+
+func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*DemandAnswer, error) {
+	picked, err := pick(ctx, snapshot, q.Selection)
+	if err != nil {
+		return nil, err
+	}
+	s := source{snapshot: snapshot, damping: q.Structure.Damping, method: q.Method}
+	band := q.bandPeriods(snapshot.Generation.Grid.PeriodsS)
+	loaded, err := s.load(ctx, picked.motions, band)
+	if err != nil {
+		return nil, err
+	}
+	picked.report.noteMethod(q.Method)
+	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles}
+	at := slices.Index(band, q.Structure.PeriodS)
+	r := newReducer(picked.motions, q.Percentiles)
+	answer.Quantities = q.reduce(r, loaded, at, at+1)
+	if q.BandWidth > 0 {
+		answer.Band = &DemandBand{FromS: band[0], ToS: band[len(band)-1], Quantities: q.reduce(r, loaded, 0, len(band))}
+	}
+	return answer, nil
+}
+
+// bandPeriods returns the structure's period and, where there is a band, its
+// ends and the grid's periods inside; ascending, each once.
+func (q DemandQuestion) bandPeriods(grid []float64) []float64 {
+	t := q.Structure.PeriodS
+	if q.BandWidth == 0 {
+		return []float64{t}
+	}
+	band := Band{FromS: stretched(t, -q.BandWidth), ToS: stretched(t, q.BandWidth)}
+	list := []float64{band.FromS, t, band.ToS}
+	for _, p := range grid {
+		if band.Contains(p) {
+			list = append(list, p)
+		}
+	}
+	return ascending(list)
+}
+
+// stretched returns t·(1+by) of the decimals that t and by are written as,
+// rounded once: the band of 1.5 s ± 10 % begins at the 1.35 s that a grid may
+// hold, where floating-point numbers would miss it.
+func stretched(t, by float64) float64 {
+	ratio := new(big.Rat).Add(decimal(by), big.NewRat(1, 1))
+	x, _ := ratio.Mul(ratio, decimal(t)).Float64()
+	return x
+}
+
+// decimal is the shortest decimal that restores x, which is finite.
+func decimal(x float64) *big.Rat {
+	r, ok := new(big.Rat).SetString(shortest(x))
+	if !ok {
+		panic("query: no decimal for " + shortest(x))
+	}
+	return r
+}
+
+// reduce takes of every motion the largest value over periods from … to-1 and
+// reduces these, quantity by quantity.
+func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantity {
+	out := make([]Quantity, len(demandQuantities))
+	values := make([]float64, o.motions)
+	for i, quantity := range demandQuantities {
+		out[i].Name = quantity.name
+		for p := from; p < to; p++ {
+			w := omega(o.periodsS[p])
+			for k, sd := range o.at(p) {
+				x := quantity.of(&q.Structure, sd, w)
+				if p == from || x > values[k] {
+					values[k] = x
+				}
+			}
+		}
+		if isDefined(values[0]) {
+			reduction := r.reduce(values)
+			out[i].Reduction = &reduction
+		}
+	}
+	return out
+}

@@ -1,0 +1,174 @@
+package query
+
+import (
+	"bufio"
+	"context"
+	"fmt"
+	"io"
+	"slices"
+	"strconv"
+
+	"swaybook/db"
+)
+
+// ExportQuestion asks for the ordinates of stored components, one row an
+// ordinate.
+type ExportQuestion struct {
+	Selection           // component: ComponentAll, siting: SitingAll by default
+	Dampings  []float64 // ratios; nil: those of the grid. Others are computed from samples.
+	Band      Band      // grid periods taken
+}
+
+// ExportSummary says what was written.
+type ExportSummary struct {
+	Selection SelectionReport
+	Rows      int
+}
+
+// exportHeader names the columns: damping is a ratio, g is 9.80665 m/s².
+const exportHeader = "record,component,damping,period_s,sd_m,psv_m_s,psa_g\n"
+
+// exportMemory is about how many bytes of ordinates are held at a time. A part
+// costs one walk through the stored spectra of each damping, so it should not
+// be small; the default grid makes it 3300 components.
+const exportMemory = 32 << 20
+
+// exportGroup is the number of components whose rows are formatted side by
+// side, about 100 kB each on the default grid, before they are written.
+const exportGroup = 16
+
+// Write writes the ordinates as CSV, ordered by record, component, damping and
+// period, numbers in the fewest digits that restore them. The memory for
+// ordinates does not grow with the store; what is known of each component,
+// about 1 kB, is held. Nothing is written before the question is found right
+// and the selection not empty; see SpectrumQuestion.Ask for the errors.
+func (q ExportQuestion) Write(ctx context.Context, store *db.Store, w io.Writer) (*ExportSummary, error) {
+	selection, err := q.Selection.withDefaults(ComponentAll, SitingAll, storedComponents)
+	if err != nil {
+		return nil, err
+	}
+	q.Selection = selection
+	if err := checkOscillators(nil, q.Dampings); err != nil {
+		return nil, err
+	}
+	if err := q.Band.validate(); err != nil {
+		return nil, err
+	}
+	var summary *ExportSummary
+	err = store.View(ctx, func(snapshot *db.Snapshot) error {
+		summary, err = q.write(ctx, snapshot, w)
+		return err
+	})
+	return summary, err
+}
+
+func (q ExportQuestion) write(ctx context.Context, snapshot *db.Snapshot, w io.Writer) (*ExportSummary, error) {
+	periods, err := gridPeriods(snapshot, q.Band)
+	if err != nil {
+		return nil, err
+	}
+	picked, err := pick(ctx, snapshot, q.Selection)
+	if err != nil {
+		return nil, err
+	}
+	e := newExporter(snapshot, q.dampings(snapshot), periods)
+	if err := e.writeAll(ctx, w, picked.motions); err != nil {
+		return nil, err
+	}
+	return &ExportSummary{Selection: picked.report, Rows: len(picked.motions) * len(e.dampings) * len(periods)}, nil
+}
+
+func (q ExportQuestion) dampings(snapshot *db.Snapshot) []float64 {
+	if len(q.Dampings) > 0 {
+		return ascending(q.Dampings)
+	}
+	return ascending(snapshot.Generation.Grid.Dampings)
+}
+
+type exporter struct {
+	snapshot *db.Snapshot
+	dampings []float64
+	periods  []float64
+	omegas   []float64
+	// keys are the cells ",damping,period," of every row of a component.
+	keys   []string
+	memory int
+}
+
+func newExporter(snapshot *db.Snapshot, dampings, periods []float64) *exporter {
+	e := &exporter{snapshot: snapshot, dampings: dampings, periods: periods, memory: exportMemory}
+	for _, t := range periods {
+		e.omegas = append(e.omegas, omega(t))
+	}
+	for _, zeta := range dampings {
+		for _, t := range periods {
+			key := strconv.AppendFloat([]byte{','}, zeta, 'g', -1, 64)
+			key = strconv.AppendFloat(append(key, ','), t, 'g', -1, 64)
+			e.keys = append(e.keys, string(append(key, ',')))
+		}
+	}
+	return e
+}
+
+func (e *exporter) partSize() int { return max(exportGroup, e.memory/(8*len(e.keys))) }
+
+func (e *exporter) writeAll(ctx context.Context, w io.Writer, motions []motion) error {
+	out := bufio.NewWriterSize(w, 1<<16)
+	if _, err := out.WriteString(exportHeader); err != nil {
+		return fmt.Errorf("write ordinates: %w", err)
+	}
+	for part := range slices.Chunk(motions, e.partSize()) {
+		if err := e.writePart(ctx, out, part); err != nil {
+			return err
+		}
+	}
+	if err := out.Flush(); err != nil {
+		return fmt.Errorf("write ordinates: %w", err)
+	}
+	return nil
+}
+
+func (e *exporter) writePart(ctx context.Context, out *bufio.Writer, part []motion) error {
+	loaded := make([]*ordinates, len(e.dampings))
+	for i, zeta := range e.dampings {
+		s := source{snapshot: e.snapshot, damping: zeta}
+		var err error
+		if loaded[i], err = s.load(ctx, part, e.periods); err != nil {
+			return err
+		}
+	}
+	texts := make([][]byte, exportGroup)
+	for from := 0; from < len(part); from += exportGroup {
+		group := part[from:min(from+exportGroup, len(part))]
+		err := inParallel(ctx, len(group), func(_ context.Context, i int) error {
+			texts[i] = e.appendRows(texts[i][:0], loaded, &group[i], from+i)
+			return nil
+		})
+		if err != nil {
+			return err
+		}
+		for i := range group {
+			if _, err := out.Write(texts[i]); err != nil {
+				return fmt.Errorf("write ordinates: %w", err)
+			}
+		}
+	}
+	return nil
+}
+
+// appendRows writes all rows of the component at this position of the part.
+func (e *exporter) appendRows(dst []byte, loaded []*ordinates, m *motion, position int) []byte {
+	head := csvText(nil, m.record())
+	head = csvText(append(head, ','), m.role)
+	for i := range e.dampings {
+		for p, w := range e.omegas {
+			sd := loaded[i].at(p)[position]
+			dst = append(append(dst, head...), e.keys[i*len(e.periods)+p]...)
+			dst = strconv.AppendFloat(dst, sd, 'g', -1, 64)
+			dst = strconv.AppendFloat(append(dst, ','), MeasurePSV.of(sd, w), 'g', -1, 64)
+			dst = strconv.AppendFloat(append(dst, ','), MeasurePSA.of(sd, w), 'g', -1, 64)
+			dst = append(dst, '\n')
+		}
+	}
+	return dst
+}

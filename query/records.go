@@ -1,0 +1,157 @@
+package query
+
+import (
+	"context"
+	"time"
+
+	"swaybook/db"
+)
+
+// RecordsQuestion asks which components a store holds. The defaults take all of
+// them.
+type RecordsQuestion struct {
+	Selection
+}
+
+// RecordRow describes one held component. Nil fields are unknown.
+type RecordRow struct {
+	Record           string   `json:"record"`
+	Event            *string  `json:"event"`
+	EventName        *string  `json:"event_name"`
+	Origin           *string  `json:"origin"` // UTC, RFC 3339
+	Magnitude        *float64 `json:"magnitude"`
+	MagnitudeType    *string  `json:"magnitude_type"`
+	DepthKM          *float64 `json:"depth_km"`
+	EventLatitude    *float64 `json:"event_latitude"`
+	EventLongitude   *float64 `json:"event_longitude"`
+	Network          *string  `json:"network"`
+	Station          *string  `json:"station"`
+	StationName      *string  `json:"station_name"`
+	StationLatitude  *float64 `json:"station_latitude"`
+	StationLongitude *float64 `json:"station_longitude"`
+	Vs30MPS          *float64 `json:"vs30_m_s"`
+	DistanceKM       *float64 `json:"distance_km"`
+	Instrument       *string  `json:"instrument"`
+	Siting           string   `json:"siting"`
+	Component        string   `json:"component"`
+	Channel          *string  `json:"channel"`
+	AzimuthDeg       *float64 `json:"azimuth_deg"`
+	Start            *string  `json:"start"` // UTC, RFC 3339
+	StepS            float64  `json:"dt_s"`
+	Samples          int      `json:"samples"`
+	DurationS        float64  `json:"duration_s"` // first sample to last
+	PGA              float64  `json:"pga_g"`
+	PGV              float64  `json:"pgv_m_s"`
+	PGD              float64  `json:"pgd_m"`
+	Unit             *string  `json:"unit"` // of the file's numbers
+	Processing       *string  `json:"processing"`
+	LowCutHz         *float64 `json:"low_cut_hz"`
+	HighCutHz        *float64 `json:"high_cut_hz"`
+	Format           string   `json:"format"`
+	Source           string   `json:"source"`
+	Line             *int     `json:"line"`
+	SHA256           string   `json:"sha256"`
+	Warnings         []string `json:"warnings"`
+}
+
+// RecordsAnswer lists components in the order of record code and role.
+type RecordsAnswer struct {
+	Selection SelectionReport
+	Rows      []RecordRow
+}
+
+// Ask answers the question from one snapshot of the store. Where nothing is
+// selected the error is an EmptyError, and the answer an empty list that can be
+// written all the same.
+func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnswer, error) {
+	selection, err := q.Selection.withDefaults(ComponentAll, SitingAll, storedComponents)
+	if err != nil {
+		return nil, err
+	}
+	answer := &RecordsAnswer{}
+	err = store.View(ctx, func(snapshot *db.Snapshot) error {
+		picked, err := pick(ctx, snapshot, selection)
+		if picked == nil {
+			return err
+		}
+		answer.Selection = picked.report
+		for i := range picked.motions {
+			answer.Rows = append(answer.Rows, recordRow(picked.motions[i].members[0]))
+		}
+		return err
+	})
+	return answer, err
+}
+
+func recordRow(c *db.HeldComponent) RecordRow {
+	event, station := c.Record.Event, c.Record.Station
+	if event == nil {
+		event = &db.Event{}
+	}
+	if station == nil {
+		station = &db.Station{}
+	}
+	return RecordRow{
+		Record: c.Record.Code,
+		Event:  orNull(event.Code), EventName: orNull(event.Name), Origin: timeOrNull(event.Origin),
+		Magnitude: event.Magnitude, MagnitudeType: orNull(event.MagnitudeType), DepthKM: event.DepthKM,
+		EventLatitude: event.LatitudeDeg, EventLongitude: event.LongitudeDeg,
+		Network: orNull(station.Network), Station: orNull(station.Code), StationName: orNull(station.Name),
+		StationLatitude: station.LatitudeDeg, StationLongitude: station.LongitudeDeg, Vs30MPS: station.Vs30MPS,
+		DistanceKM: c.Record.DistanceKM, Instrument: orNull(c.Record.Instrument), Siting: c.Record.Siting,
+		Component: c.Role, Channel: orNull(c.Channel), AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(c.Record.Start),
+		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
+		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
+		Unit: orNull(c.Unit), Processing: orNull(c.Processing), LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz,
+		Format: c.SourceFormat, Source: c.SourcePath, Line: lineOrNull(c.SourceLine), SHA256: c.SourceSHA256,
+		Warnings: append([]string{}, c.Warnings...),
+	}
+}
+
+// RejectionRow is a file, or a channel of it, that could not be stored.
+type RejectionRow struct {
+	Source string  `json:"source"`
+	Line   *int    `json:"line"` // nil where the cause is not in one line
+	Cause  string  `json:"cause"`
+	SHA256 *string `json:"sha256"` // nil where the file could not be read
+}
+
+// RejectionsAnswer lists rejections in the order of path and line.
+type RejectionsAnswer struct {
+	Rows []RejectionRow
+}
+
+// Rejections lists what could not be stored. None is no error.
+func Rejections(ctx context.Context, store *db.Store) (*RejectionsAnswer, error) {
+	found, err := store.Rejections(ctx)
+	if err != nil {
+		return nil, err
+	}
+	answer := &RejectionsAnswer{Rows: make([]RejectionRow, len(found))}
+	for i, r := range found {
+		answer.Rows[i] = RejectionRow{Source: r.Path, Line: lineOrNull(r.Line), Cause: r.Cause, SHA256: orNull(r.SHA256)}
+	}
+	return answer, nil
+}
+
+func orNull(s string) *string {
+	if s == "" {
+		return nil
+	}
+	return &s
+}
+
+func timeOrNull(at time.Time) *string {
+	if at.IsZero() {
+		return nil
+	}
+	s := at.UTC().Format(time.RFC3339Nano)
+	return &s
+}
+
+func lineOrNull(n int) *int {
+	if n == 0 {
+		return nil
+	}
+	return &n
+}

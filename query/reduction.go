@@ -1,0 +1,97 @@
+package query
+
+import (
+	"context"
+	"math"
+	"runtime"
+	"slices"
+
+	"swaybook/query/stats"
+)
+
+// Reduction is the statistics of one quantity over the motions of a selection,
+// in the quantity's unit; LogStd has none. What is undefined is NaN: LogStd of
+// one motion, LogMean and LogStd where a value is zero.
+type Reduction struct {
+	Count       int
+	Mean        float64
+	LogMean     float64   // geometric mean
+	LogStd      float64   // standard deviation of ln, divisor Count-1
+	Percentiles []float64 // in the order of the question
+	Min, Max    float64   // the envelope
+	// Governing is the record that gives Max, the first in order of code where
+	// several do, and GoverningComponent its component.
+	Governing          string
+	GoverningComponent string
+}
+
+// DefaultPercentiles are the median and one standard deviation to each side of
+// a normal distribution, rounded.
+func DefaultPercentiles() []float64 { return []float64{16, 50, 84} }
+
+// reducer reduces samples one after another in the same space. It is for one
+// goroutine.
+type reducer struct {
+	motions         []motion
+	percents        []float64
+	sorted, scratch []float64
+}
+
+func newReducer(motions []motion, percents []float64) *reducer {
+	n := len(motions)
+	return &reducer{motions: motions, percents: percents, sorted: make([]float64, n), scratch: make([]float64, n)}
+}
+
+// reduce takes one value a motion, in the order of motions.
+func (r *reducer) reduce(values []float64) Reduction {
+	copy(r.sorted, values)
+	stats.Sort(r.sorted, r.scratch)
+	n := len(values)
+	out := Reduction{
+		Count: n, Mean: stats.Mean(values),
+		Percentiles: stats.Percentiles(nil, r.sorted, r.percents),
+		Min:         r.sorted[0], Max: r.sorted[n-1],
+	}
+	out.LogMean, out.LogStd = stats.LogMoments(r.scratch, values)
+	if governing := slices.Index(values, out.Max); governing >= 0 {
+		m := &r.motions[governing]
+		out.Governing, out.GoverningComponent = m.record(), m.role
+	}
+	return out
+}
+
+// reduceAll reduces a measure at every period, from several goroutines.
+func reduceAll(ctx context.Context, o *ordinates, motions []motion, measure Measure, percents []float64) ([]Reduction, error) {
+	out := make([]Reduction, len(o.periodsS))
+	workers := min(runtime.GOMAXPROCS(0), len(out))
+	err := inParallel(ctx, workers, func(ctx context.Context, first int) error {
+		r := newReducer(motions, percents)
+		values := make([]float64, len(motions))
+		for p := first; p < len(out) && ctx.Err() == nil; p += workers {
+			omega := omega(o.periodsS[p])
+			for i, sd := range o.at(p) {
+				values[i] = measure.of(sd, omega)
+			}
+			out[p] = r.reduce(values)
+		}
+		return ctx.Err()
+	})
+	return out, err
+}
+
+// scaled returns the reduction in a unit of which one is `per` of the present.
+func (r Reduction) scaled(per float64) Reduction {
+	if per == 1 {
+		return r
+	}
+	r.Mean, r.LogMean, r.Min, r.Max = r.Mean/per, r.LogMean/per, r.Min/per, r.Max/per
+	percentiles := make([]float64, len(r.Percentiles))
+	for i, p := range r.Percentiles {
+		percentiles[i] = p / per
+	}
+	r.Percentiles = percentiles
+	return r
+}
+
+// isDefined reports whether a figure can be printed.
+func isDefined(x float64) bool { return !math.IsNaN(x) && !math.IsInf(x, 0) }

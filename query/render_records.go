@@ -1,0 +1,140 @@
+package query
+
+import (
+	"io"
+	"strconv"
+	"strings"
+)
+
+// Write renders the list: all fields as CSV and JSON, those that fit a screen
+// as a table. The error is a UsageError for an unknown format and otherwise one
+// of w.
+func (a *RecordsAnswer) Write(w io.Writer, format Format) error {
+	var text []byte
+	var err error
+	switch format {
+	case FormatTable, "":
+		text = a.table()
+	case FormatCSV:
+		text = a.csv()
+	case FormatJSON:
+		text, err = jsonRows(a.Rows)
+	default:
+		_, err = ParseFormat(string(format))
+	}
+	if err != nil {
+		return err
+	}
+	return writeText(w, "records", text)
+}
+
+func (a *RecordsAnswer) table() []byte {
+	t := table{columns: []column{
+		{name: "record", isWord: true}, {name: "component", isWord: true},
+		{name: "event", isWord: true}, {name: "magnitude"}, {name: "station", isWord: true}, {name: "distance", unit: "km"},
+		{name: "siting", isWord: true}, {name: "step", unit: "s"}, {name: "samples"},
+		{name: "PGA", unit: "g"}, {name: "PGV", unit: "m/s"}, {name: "PGD", unit: "m"}, {name: "format", isWord: true},
+	}}
+	for i := range a.Rows {
+		r := &a.Rows[i]
+		t.add(r.Record, r.Component, orDash(r.Event), shortOrDash(r.Magnitude), orDash(r.Station), figure(orNaN(r.DistanceKM)),
+			r.Siting, shortest(r.StepS), strconv.Itoa(r.Samples), figure(r.PGA), figure(r.PGV), figure(r.PGD), r.Format)
+	}
+	text := t.appendTo(nil)
+	if remarks := a.Selection.Remarks(); remarks != "" {
+		text = append(append(text, '\n'), remarks...)
+	}
+	return text
+}
+
+// recordsHeader names the columns as the fields of JSON are named.
+var recordsHeader = []string{
+	"record", "event", "event_name", "origin", "magnitude", "magnitude_type", "depth_km", "event_latitude", "event_longitude",
+	"network", "station", "station_name", "station_latitude", "station_longitude", "vs30_m_s", "distance_km",
+	"instrument", "siting", "component", "channel", "azimuth_deg", "start", "dt_s", "samples", "duration_s",
+	"pga_g", "pgv_m_s", "pgd_m", "unit", "processing", "low_cut_hz", "high_cut_hz", "format", "source", "line", "sha256", "warnings",
+}
+
+func (a *RecordsAnswer) csv() []byte {
+	var l csvLine
+	l.words(recordsHeader...)
+	l.end()
+	for i := range a.Rows {
+		a.Rows[i].csv(&l)
+	}
+	return l.text
+}
+
+// csv writes the cells in the order of recordsHeader; an unknown is an empty
+// cell, warnings are joined with "; ".
+func (r *RecordRow) csv(l *csvLine) {
+	l.words(r.Record, orEmpty(r.Event), orEmpty(r.EventName), orEmpty(r.Origin))
+	l.number(orNaN(r.Magnitude))
+	l.word(orEmpty(r.MagnitudeType))
+	l.number(orNaN(r.DepthKM))
+	l.number(orNaN(r.EventLatitude))
+	l.number(orNaN(r.EventLongitude))
+	l.words(orEmpty(r.Network), orEmpty(r.Station), orEmpty(r.StationName))
+	for _, x := range []*float64{r.StationLatitude, r.StationLongitude, r.Vs30MPS, r.DistanceKM} {
+		l.number(orNaN(x))
+	}
+	l.words(orEmpty(r.Instrument), r.Siting, r.Component, orEmpty(r.Channel))
+	l.number(orNaN(r.AzimuthDeg))
+	l.word(orEmpty(r.Start))
+	l.number(r.StepS)
+	l.integer(r.Samples)
+	for _, x := range []float64{r.DurationS, r.PGA, r.PGV, r.PGD} {
+		l.number(x)
+	}
+	l.words(orEmpty(r.Unit), orEmpty(r.Processing))
+	l.number(orNaN(r.LowCutHz))
+	l.number(orNaN(r.HighCutHz))
+	l.words(r.Format, r.Source, lineText(r.Line), r.SHA256, strings.Join(r.Warnings, "; "))
+	l.end()
+}
+
+// Write renders the list. The error is a UsageError for an unknown format and
+// otherwise one of w.
+func (a *RejectionsAnswer) Write(w io.Writer, format Format) error {
+	var text []byte
+	var err error
+	switch format {
+	case FormatTable, "":
+		text = a.table()
+	case FormatCSV:
+		text = a.csv()
+	case FormatJSON:
+		text, err = jsonRows(a.Rows)
+	default:
+		_, err = ParseFormat(string(format))
+	}
+	if err != nil {
+		return err
+	}
+	return writeText(w, "rejections", text)
+}
+
+func (a *RejectionsAnswer) table() []byte {
+	t := table{columns: []column{{name: "source", isWord: true}, {name: "line"}, {name: "cause", isWord: true}}}
+	for i := range a.Rows {
+		r := &a.Rows[i]
+		line := lineText(r.Line)
+		if line == "" {
+			line = "-"
+		}
+		t.add(r.Source, line, r.Cause)
+	}
+	return t.appendTo(nil)
+}
+
+func (a *RejectionsAnswer) csv() []byte {
+	var l csvLine
+	l.words("source", "line", "cause", "sha256")
+	l.end()
+	for i := range a.Rows {
+		r := &a.Rows[i]
+		l.words(r.Source, lineText(r.Line), r.Cause, orEmpty(r.SHA256))
+		l.end()
+	}
+	return l.text
+}

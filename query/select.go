@@ -1,0 +1,210 @@
+package query
+
+import (
+	"context"
+	"slices"
+
+	"swaybook/db"
+)
+
+// motion is what statistics count as one: a component, or a horizontal pair.
+type motion struct {
+	members []*db.HeldComponent // one or two, of one record
+	role    string              // the component's role, "geomean" or "larger"
+}
+
+func (m *motion) record() string { return m.members[0].Record.Code }
+
+// picked is a selection carried out: its motions in the order of record code
+// and role.
+type picked struct {
+	motions []motion
+	report  SelectionReport
+	unmet   int
+	held    int
+}
+
+// pick carries out a selection whose defaults are filled in. The error is an
+// EmptyError where no motion is left, beside what was counted.
+func pick(ctx context.Context, snapshot *db.Snapshot, s Selection) (*picked, error) {
+	condition, err := compileWhere(s.Where)
+	if err != nil {
+		return nil, err
+	}
+	sitings, err := s.Siting.taken()
+	if err != nil {
+		return nil, err
+	}
+	held, err := snapshot.Components(ctx)
+	if err != nil {
+		return nil, err
+	}
+	p := &picker{selection: s, condition: condition, sitings: sitings, leftOut: map[string]int{}}
+	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
+	for from := 0; from < len(held); {
+		to := from + 1
+		for to < len(held) && held[to].RecordID == held[from].RecordID {
+			to++
+		}
+		if err := p.take(held[from:to]); err != nil {
+			return nil, err
+		}
+		from = to
+	}
+	return p.finish()
+}
+
+// picker sorts records into taken, unmet and left out.
+type picker struct {
+	picked
+	selection Selection
+	condition *where
+	sitings   map[string]bool
+	leftOut   map[string]int  // records by reason
+	reasons   []string        // in order of first use
+	events    map[string]bool // codes
+	unknown   int             // records of unknown siting that are taken
+}
+
+// take looks at the components of one record. A record counts once as unmet if
+// none of its motions meets the expression, and once for every reason that
+// leaves a motion of it out. The expression is asked first, so that reasons
+// count only what the question is about.
+func (p *picker) take(components []db.HeldComponent) error {
+	p.held++
+	candidates, lacking := candidatesOf(p.selection.Component, components)
+	before, unmet := len(p.motions), len(candidates) > 0
+	var reasons []string
+	for _, m := range candidates {
+		reason, met, err := p.judge(&m, lacking)
+		switch {
+		case err != nil:
+			return err
+		case reason != "":
+			unmet = false
+			if !slices.Contains(reasons, reason) {
+				reasons = append(reasons, reason)
+			}
+		case met:
+			unmet = false
+			p.motions = append(p.motions, m)
+		}
+	}
+	if unmet {
+		p.unmet++
+	}
+	p.count(reasons)
+	if len(p.motions) > before {
+		p.note(&components[0].Record)
+	}
+	return nil
+}
+
+// judge says whether a motion is taken, or why it is left out.
+func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err error) {
+	a := m.attributes()
+	unknown := p.condition.unknown(&a)
+	if unknown == "" {
+		if met, err = p.condition.met(&a); err != nil || !met {
+			return "", false, err
+		}
+	}
+	switch {
+	case !p.sitings[a.Siting]:
+		return "siting " + a.Siting, false, nil
+	case lacking != "":
+		return lacking, false, nil
+	case unknown != "":
+		return unknown + " unknown", false, nil
+	}
+	return "", true, nil
+}
+
+func (p *picker) count(reasons []string) {
+	for _, r := range reasons {
+		if p.leftOut[r] == 0 {
+			p.reasons = append(p.reasons, r)
+		}
+		p.leftOut[r]++
+	}
+}
+
+// note counts a record that contributes.
+func (p *picker) note(r *db.Record) {
+	p.report.Records++
+	if r.Siting == "unknown" {
+		p.unknown++
+	}
+	if r.Event == nil {
+		return
+	}
+	if p.events == nil {
+		p.events = map[string]bool{}
+	}
+	p.events[r.Event.Code] = true
+}
+
+func (p *picker) finish() (*picked, error) {
+	slices.Sort(p.reasons)
+	for _, r := range p.reasons {
+		p.report.LeftOut = append(p.report.LeftOut, LeftOut{Reason: r, Records: p.leftOut[r]})
+	}
+	p.report.Spectra, p.report.Events = len(p.motions), len(p.events)
+	if p.unknown > 0 && p.selection.Siting != "unknown" {
+		p.report.Notes = append(p.report.Notes, countOf(p.unknown, "record", "records")+" of unknown siting used")
+	}
+	if len(p.motions) == 0 {
+		return &p.picked, &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: p.report.LeftOut}
+	}
+	return &p.picked, nil
+}
+
+// attributes are those of the component, or of the pair.
+func (m *motion) attributes() attributes {
+	if len(m.members) == 2 {
+		return pairAttributes(Component(m.role), m.members[0], m.members[1])
+	}
+	a := componentAttributes(m.members[0])
+	a.Component = m.role
+	return a
+}
+
+// candidatesOf returns the motions that a record's components, in order of
+// role, make. Where they cannot make the asked one, lacking says why and the
+// candidate is a stand-in of which the expression can be asked.
+func candidatesOf(c Component, components []db.HeldComponent) (candidates []motion, lacking string) {
+	var horizontal []*db.HeldComponent
+	for i := range components {
+		held := &components[i]
+		isHorizontal := held.Role == db.RoleH1 || held.Role == db.RoleH2
+		if isHorizontal {
+			horizontal = append(horizontal, held)
+		}
+		if c == ComponentAll || c == ComponentEach && isHorizontal || string(c) == held.Role {
+			candidates = append(candidates, motion{members: []*db.HeldComponent{held}, role: held.Role})
+		}
+	}
+	if c.IsPair() {
+		return pairOf(c, horizontal, components)
+	}
+	if len(candidates) > 0 {
+		return candidates, ""
+	}
+	standIn := []motion{{members: []*db.HeldComponent{&components[0]}, role: string(c)}}
+	if c == ComponentEach {
+		return standIn, "no horizontal component"
+	}
+	return standIn, "no " + string(c) + " component"
+}
+
+func pairOf(c Component, horizontal []*db.HeldComponent, components []db.HeldComponent) (candidates []motion, lacking string) {
+	switch len(horizontal) {
+	case 2:
+	case 1:
+		lacking = "one horizontal component only"
+	default:
+		horizontal = []*db.HeldComponent{&components[0]}
+		lacking = "no horizontal component"
+	}
+	return []motion{{members: horizontal, role: string(c)}}, lacking
+}

@@ -1,0 +1,177 @@
+package query
+
+import (
+	"slices"
+	"strings"
+)
+
+// Component names what one motion of a selection is made of.
+type Component string
+
+// Each horizontal component on its own, one role only, or a horizontal pair
+// combined at every period: by the geometric mean of both ordinates or by the
+// larger one. All takes every stored component; statistics do not accept it.
+const (
+	ComponentEach    Component = "each"
+	ComponentH1      Component = "h1"
+	ComponentH2      Component = "h2"
+	ComponentV       Component = "v"
+	ComponentGeomean Component = "geomean"
+	ComponentLarger  Component = "larger"
+	ComponentAll     Component = "all"
+)
+
+var (
+	statisticsComponents = []Component{ComponentEach, ComponentH1, ComponentH2, ComponentV, ComponentGeomean, ComponentLarger}
+	storedComponents     = []Component{ComponentAll, ComponentEach, ComponentH1, ComponentH2, ComponentV}
+)
+
+// ParseComponent reads a component for statistics. The empty text gives
+// ComponentGeomean.
+func ParseComponent(text string) (Component, error) {
+	if text == "" {
+		return ComponentGeomean, nil
+	}
+	return Component(text), checkComponent(Component(text), statisticsComponents)
+}
+
+// ParseStoredComponent reads a component for lists and export, which hold
+// stored components only. The empty text gives ComponentAll.
+func ParseStoredComponent(text string) (Component, error) {
+	if text == "" {
+		return ComponentAll, nil
+	}
+	return Component(text), checkComponent(Component(text), storedComponents)
+}
+
+func checkComponent(c Component, accepted []Component) error {
+	if slices.Contains(accepted, c) {
+		return nil
+	}
+	return usage("component", "unknown component %q; accepted here: %s", string(c), joinWords(accepted))
+}
+
+// IsPair reports whether two horizontal components make one motion.
+func (c Component) IsPair() bool { return c == ComponentGeomean || c == ComponentLarger }
+
+// Siting says which sitings of instruments a selection takes: "all", or a list
+// separated by commas of free-field, ground, structure, borehole and unknown.
+// In a list, "ground" stands for what is taken as ground motion: free-field,
+// ground and unknown.
+type Siting string
+
+// The default for statistics and the default for lists and export.
+const (
+	SitingGround Siting = "ground"
+	SitingAll    Siting = "all"
+)
+
+// sitingWord is a word of a Siting and the stored sitings that it takes.
+type sitingWord struct {
+	word  Siting
+	takes []string
+}
+
+var sitings = []sitingWord{
+	{SitingGround, []string{"free-field", "ground", "unknown"}},
+	{"free-field", []string{"free-field"}},
+	{"structure", []string{"structure"}},
+	{"borehole", []string{"borehole"}},
+	{"unknown", []string{"unknown"}},
+	{SitingAll, []string{"free-field", "ground", "structure", "borehole", "unknown"}},
+}
+
+// ParseSiting reads a list of sitings for statistics. The empty text gives
+// SitingGround.
+func ParseSiting(text string) (Siting, error) { return parseSiting(text, SitingGround) }
+
+// ParseStoredSiting reads a list of sitings for lists and export. The empty
+// text gives SitingAll.
+func ParseStoredSiting(text string) (Siting, error) { return parseSiting(text, SitingAll) }
+
+func parseSiting(text string, empty Siting) (Siting, error) {
+	if strings.TrimSpace(text) == "" {
+		return empty, nil
+	}
+	var words []string
+	for word := range strings.SplitSeq(text, ",") {
+		words = append(words, strings.TrimSpace(word))
+	}
+	s := Siting(strings.Join(words, ","))
+	_, err := s.taken()
+	return s, err
+}
+
+// taken returns the set of sitings that s takes.
+func (s Siting) taken() (map[string]bool, error) {
+	out := map[string]bool{}
+	for word := range strings.SplitSeq(string(s), ",") {
+		at := slices.IndexFunc(sitings, func(v sitingWord) bool { return string(v.word) == word })
+		if at < 0 {
+			return nil, usage("siting", "unknown siting %q; accepted: %s", word, sitingWords())
+		}
+		for _, siting := range sitings[at].takes {
+			out[siting] = true
+		}
+	}
+	return out, nil
+}
+
+func sitingWords() string {
+	var words []Siting
+	for _, s := range sitings {
+		words = append(words, s.word)
+	}
+	return joinWords(words)
+}
+
+func joinWords[T ~string](words []T) string {
+	texts := make([]string, len(words))
+	for i, w := range words {
+		texts[i] = string(w)
+	}
+	return strings.Join(texts, ", ")
+}
+
+// Selection says which motions a question is about. An empty component or
+// siting stands for the question's default.
+//
+// Where is a boolean expression over the attributes that WhereAttributes lists,
+// for example magnitude >= 6 and distance_km < 50. A motion that lacks a number
+// which the expression uses is left out and counted, even where another part of
+// the expression would decide; an unknown string is "". Attributes are the
+// component's own, those of a pair are combined: peaks as the ordinates are, of
+// all else the less favourable, and the azimuth of a pair is unknown.
+type Selection struct {
+	Where     string // "" takes all
+	Component Component
+	Siting    Siting
+}
+
+// withDefaults fills in what is empty and checks the rest.
+func (s Selection) withDefaults(component Component, siting Siting, accepted []Component) (Selection, error) {
+	if s.Component == "" {
+		s.Component = component
+	}
+	if s.Siting == "" {
+		s.Siting = siting
+	}
+	if err := checkComponent(s.Component, accepted); err != nil {
+		return s, err
+	}
+	_, err := s.Siting.taken()
+	return s, err
+}
+
+// SelectionReport says what a selection took and what it left out.
+type SelectionReport struct {
+	Where     string
+	Component Component
+	Siting    Siting
+	Method    Method
+	Records   int // that contribute
+	Spectra   int // that contribute
+	Events    int // known events that contribute
+	LeftOut   []LeftOut
+	Notes     []string
+}
