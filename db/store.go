@@ -10,8 +10,10 @@ import (
 	"os"
 	"path/filepath"
 	"strings"
+	"time"
 
-	_ "modernc.org/sqlite" // the driver, by its side effect
+	"modernc.org/sqlite"
+	sqlite3 "modernc.org/sqlite/lib"
 )
 
 // busyTimeoutMS is how long a connection waits for another process's write
@@ -77,14 +79,36 @@ func openWriter(ctx context.Context, path string) (*Store, error) {
 }
 
 func prepareWriter(ctx context.Context, write *sql.DB) error {
-	var mode string
-	if err := write.QueryRowContext(ctx, "PRAGMA journal_mode").Scan(&mode); err != nil {
+	mode, err := switchToLog(ctx, write)
+	if err != nil {
 		return err
 	}
 	if !strings.EqualFold(mode, "wal") {
 		return fmt.Errorf("write-ahead log refused: the journal mode is %q; is the folder on a file system without shared memory?", mode)
 	}
 	return migrate(ctx, write)
+}
+
+// switchToLog asks for the write-ahead log, which the file then keeps, and
+// returns the mode that SQLite gave. Of several processes that do so at once on
+// a new file all but one are turned away without the busy timeout, so ask again.
+func switchToLog(ctx context.Context, write *sql.DB) (mode string, err error) {
+	for wait := time.Millisecond; ; wait *= 2 {
+		err = write.QueryRowContext(ctx, "PRAGMA journal_mode = wal").Scan(&mode)
+		if !isBusy(err) || wait > busyTimeoutMS*time.Millisecond {
+			return mode, err
+		}
+		select {
+		case <-ctx.Done():
+			return "", ctx.Err()
+		case <-time.After(wait):
+		}
+	}
+}
+
+func isBusy(err error) bool {
+	e, ok := errors.AsType[*sqlite.Error](err)
+	return ok && e.Code()&0xff == sqlite3.SQLITE_BUSY
 }
 
 func openReader(ctx context.Context, path string) (*Store, error) {
@@ -113,11 +137,12 @@ func openPool(path string) (*sql.DB, error) {
 }
 
 // dsn is a file: URI, since a plain path would drop the mode without a word.
-// Every pragma stands in it, so that each connection of a pool has them.
+// The pragmas of a connection stand in it, so that each of a pool has them; the
+// write-ahead log is the file's.
 // synchronous NORMAL with a write-ahead log keeps the file consistent through
 // a power cut and can lose the last batches only whole.
 func dsn(path, mode string, more string) string {
-	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)&_pragma=journal_mode(wal)"+
+	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)"+
 		"&_pragma=synchronous(normal)&_pragma=cache_size(-32768)", busyTimeoutMS)
 	u := url.URL{Scheme: "file", Opaque: url.PathEscape(filepath.ToSlash(path))}
 	return u.String() + "?mode=" + mode + "&" + pragmas + "&" + more

@@ -12,6 +12,8 @@ import (
 	"testing"
 	"testing/fstest"
 	"time"
+
+	"golang.org/x/sync/errgroup"
 )
 
 // testGrid has values whose shortest decimals are known.
@@ -191,6 +193,26 @@ func TestOpenMigrates(t *testing.T) {
 	defer s.Close()
 	if err := s.View(t.Context(), func(*Snapshot) error { return nil }); !errors.Is(err, ErrEmpty) {
 		t.Errorf("View = %v, want ErrEmpty", err)
+	}
+}
+
+// Several processes, here handles, may make one store at the same time.
+func TestCreateAtTheSameTime(t *testing.T) {
+	for range 20 {
+		path := filepath.Join(t.TempDir(), "s.db")
+		var group errgroup.Group
+		for range 4 {
+			group.Go(func() error {
+				s, err := Create(t.Context(), path)
+				if err != nil {
+					return err
+				}
+				return s.Close()
+			})
+		}
+		if err := group.Wait(); err != nil {
+			t.Fatal(err)
+		}
 	}
 }
 
