@@ -1,0 +1,165 @@
+package main
+
+import (
+	"context"
+	"io"
+	"path/filepath"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/pipeline/demo"
+	"swaybook/query"
+)
+
+func demoCommand() *cli.Command {
+	return &cli.Command{
+		Name:  "demo",
+		Usage: "invent a region's records and run the whole job on them",
+		Description: "Writes record files in several formats, with a catalogue, for a region that does not exist; then ingests them and\n" +
+			"shows a spectrum and the demands of invented structures. The store is DIR/demo.db unless --store names another.",
+		Flags: []cli.Flag{
+			&cli.StringFlag{Name: "dir", Value: "swaybook-demo", Usage: "folder for the files, `DIR`"},
+			&cli.IntFlag{Name: "events", Usage: "earthquakes (default: the region's twelve)"},
+			&cli.IntFlag{Name: "stations", Usage: "stations (default: the region's twenty)"},
+			&cli.IntFlag{Name: "seed", Value: 1, Usage: "seed of the random numbers"},
+			&cli.BoolFlag{Name: "files-only", Usage: "write the files and stop"},
+		},
+		Action: func(c *cli.Context) error {
+			o, err := newDemoOptions(c)
+			if err != nil {
+				return err
+			}
+			return runDemo(c.Context, o, c.App.Writer)
+		},
+	}
+}
+
+type demoOptions struct {
+	dir       string
+	store     string
+	region    demo.Options
+	filesOnly bool
+	monitor   *monitor
+}
+
+func newDemoOptions(c *cli.Context) (o demoOptions, err error) {
+	if err := noArguments(c); err != nil {
+		return o, err
+	}
+	for _, flag := range []string{"events", "stations"} {
+		if c.IsSet(flag) && c.Int(flag) < 1 {
+			return o, usagef("--%s %d: want a positive number", flag, c.Int(flag))
+		}
+	}
+	logger, err := newLogger(c)
+	if err != nil {
+		return o, err
+	}
+	o = demoOptions{
+		dir: c.String("dir"), store: c.String("store"), filesOnly: c.Bool("files-only"),
+		region:  demo.Options{Events: c.Int("events"), Stations: c.Int("stations"), Seed: c.Int("seed"), Damaged: true},
+		monitor: newMonitor(logger, c.App.ErrWriter, c.Bool("quiet")),
+	}
+	if !c.IsSet("store") {
+		o.store = filepath.Join(o.dir, "demo.db")
+	}
+	return o, nil
+}
+
+// runDemo writes the files and does with them what a user would, printing each
+// command before its result.
+func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
+	p := &printer{w: w}
+	p.printf("An invented region: no place, event, station or structure here is real, and no motion was recorded.\n\n")
+	written, err := demo.Write(o.dir, o.region)
+	if err != nil {
+		return err
+	}
+	p.printf("%s: %d earthquakes, %d stations, %d records in %d files (%.0f MB), %d of them damaged on purpose; %s\n",
+		o.dir, written.Events, written.Stations, written.Records, written.Files+written.Damaged, float64(written.Bytes)/1e6, written.Damaged, "see README.txt there")
+	if o.filesOnly || p.err != nil {
+		return p.err
+	}
+	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s\n", o.store, o.dir, written.Catalogue)
+	if p.err != nil {
+		return p.err
+	}
+	if err := demoIngest(ctx, o, written.Catalogue, w); err != nil {
+		return err
+	}
+	store, err := db.Open(ctx, o.store)
+	if err != nil {
+		return err
+	}
+	defer store.Close()
+	return demoQueries(ctx, store, o.store, w)
+}
+
+// demoIngest runs the ingest. That the damaged files are rejected is the point
+// of them, and no failure of the demo.
+func demoIngest(ctx context.Context, o demoOptions, catalogue string, w io.Writer) error {
+	in := ingestOptions{store: o.store, monitor: o.monitor, pipeline: pipelineOptions(o.store, o.monitor)}
+	in.pipeline.Paths = []string{o.dir}
+	if err := in.readCatalogue(catalogue); err != nil {
+		return err
+	}
+	if err := runIngest(ctx, in, w); err != nil && err != errRejected {
+		return err
+	}
+	return nil
+}
+
+// demoPeriods are a few round periods that fit a screen.
+const demoPeriods = "0.05,0.1,0.2,0.3,0.5,0.7,1,1.5,2,3,5"
+
+func demoQueries(ctx context.Context, store *db.Store, name string, w io.Writer) error {
+	const near = "magnitude >= 5.5 and distance_km < 60"
+	p := &printer{w: w}
+	p.printf("\n$ swaybook --store %s query spectrum --where '%s' --periods %s\n", name, near, demoPeriods)
+	periods, err := query.ParsePeriods(demoPeriods)
+	if err != nil {
+		return err
+	}
+	spectrum := spectrumOptions{
+		question: query.SpectrumQuestion{Selection: query.Selection{Where: near}, Damping: 0.05, PeriodsS: periods},
+		format:   query.FormatTable, units: query.UnitsSI,
+	}
+	if err := runSpectrum(ctx, store, spectrum, w, w); err != nil {
+		return err
+	}
+	for _, s := range demo.Structures() {
+		p.printf("\n%s (invented)\n$ swaybook --store %s query demand%s --where '%s'\n", s.Name, name, demandWords(s), near)
+		if p.err != nil {
+			return p.err
+		}
+		if err := demoDemand(ctx, store, s, near, w); err != nil {
+			return err
+		}
+	}
+	p.printf("\nThe store is %s. Ask it something else: swaybook --store %s query --help\n", name, name)
+	return p.err
+}
+
+func demandWords(s demo.Structure) string {
+	var out string
+	for _, f := range [][2]string{{"period", s.Period}, {"stiffness", s.Stiffness}, {"weight", s.Weight}, {"damping", s.Damping}, {"height", s.Height}} {
+		if f[1] != "" {
+			out += " --" + f[0] + " " + f[1]
+		}
+	}
+	return out
+}
+
+func demoDemand(ctx context.Context, store *db.Store, s demo.Structure, where string, w io.Writer) error {
+	structure, err := query.ParseStructure(query.StructureText{
+		Period: s.Period, Stiffness: s.Stiffness, Weight: s.Weight, Damping: s.Damping, Height: s.Height,
+	})
+	if err != nil {
+		return err
+	}
+	return runDemand(ctx, store, demandOptions{
+		question: query.DemandQuestion{Selection: query.Selection{Where: where}, Structure: structure},
+		format:   query.FormatTable, units: query.UnitsSI,
+	}, w)
+}

@@ -1,0 +1,59 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/query"
+)
+
+func exportCommand() *cli.Command {
+	return &cli.Command{
+		Name:        "export",
+		Usage:       "write what the store holds for other programs",
+		Subcommands: []*cli.Command{exportOrdinatesCommand()},
+	}
+}
+
+func exportOrdinatesCommand() *cli.Command {
+	return &cli.Command{
+		Name:  "ordinates",
+		Usage: "CSV of single spectral ordinates: record,component,damping,period_s,sd_m,psv_m_s,psa_g",
+		Description: "Everything held is written, structure and borehole channels too, unless filtered. Damping is a ratio,\n" +
+			"g is 9.80665 m/s². Rows are ordered by record, component, damping and period.",
+		Flags: append(selectionFlags("h1, h2 or v (default: all)", "as for query spectrum (default: all)"),
+			&cli.StringFlag{Name: "damping", Usage: "damping ratios, a `LIST` such as 5% or 2%,0.05 (default: the grid's)"},
+			&cli.StringFlag{Name: "band", Usage: "periods of the grid to write, `FROM:TO` in s"},
+		),
+		Action: func(c *cli.Context) error {
+			q, err := newExportQuestion(c)
+			if err != nil {
+				return err
+			}
+			return withStore(c, func(ctx context.Context, store *db.Store) error {
+				return runExport(ctx, store, q, c.App.Writer, c.App.ErrWriter)
+			})
+		},
+	}
+}
+
+func newExportQuestion(c *cli.Context) (q query.ExportQuestion, err error) {
+	q.Selection, err = newSelection(c, query.ParseStoredComponent, query.ParseStoredSiting)
+	return q, errors.Join(err, noArguments(c),
+		parseInto(&q.Dampings, c, "damping", query.ParseDampings),
+		parseInto(&q.Band, c, "band", query.ParseBand))
+}
+
+func runExport(ctx context.Context, store *db.Store, q query.ExportQuestion, w, stderr io.Writer) error {
+	summary, err := q.Write(ctx, store, w)
+	if err != nil {
+		return err
+	}
+	fmt.Fprint(stderr, summary.Selection.Remarks())
+	return nil
+}

@@ -1,0 +1,152 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"log/slog"
+	"os"
+	"slices"
+	"strconv"
+	"strings"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/query"
+)
+
+const defaultStore = "swaybook.db"
+
+func globalFlags() []cli.Flag {
+	return []cli.Flag{
+		&cli.StringFlag{Name: "store", Value: defaultStore, EnvVars: []string{"SWAYBOOK_STORE"}, Usage: "the store, one SQLite `FILE`"},
+		&cli.StringFlag{Name: "log", Value: "text", Usage: "form of the messages on stderr: text or json"},
+		&cli.BoolFlag{Name: "quiet", Usage: "no progress and no messages but errors"},
+	}
+}
+
+// newLogger returns the logger that --log and --quiet ask for.
+func newLogger(c *cli.Context) (*slog.Logger, error) {
+	options := &slog.HandlerOptions{Level: slog.LevelInfo}
+	if c.Bool("quiet") {
+		options.Level = slog.LevelError
+	}
+	switch c.String("log") {
+	case "text":
+		return slog.New(slog.NewTextHandler(c.App.ErrWriter, options)), nil
+	case "json":
+		return slog.New(slog.NewJSONHandler(c.App.ErrWriter, options)), nil
+	}
+	return nil, usagef("--log %s: want text or json", c.String("log"))
+}
+
+// oneOf returns the flag's value, which must be one of the choices.
+func oneOf(c *cli.Context, flag string, choices ...string) (string, error) {
+	value := c.String(flag)
+	if !slices.Contains(choices, value) {
+		return "", usagef("--%s %s: want one of %s", flag, value, strings.Join(choices, ", "))
+	}
+	return value, nil
+}
+
+// noArguments refuses words that a command would silently ignore.
+func noArguments(c *cli.Context) error {
+	if c.Args().Present() {
+		return usagef("%s takes no arguments, found %q", c.Command.FullName(), c.Args().First())
+	}
+	return nil
+}
+
+// withStore opens the store for reading around f.
+func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
+	store, err := db.Open(c.Context, c.String("store"))
+	if errors.Is(err, db.ErrNoStore) {
+		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH...", err, c.String("store"))
+	}
+	if err != nil {
+		return err
+	}
+	defer store.Close()
+	return f(c.Context, store)
+}
+
+// periodList reads a list of periods in s from text such as "0.1,0.2,1" or,
+// after @, from a file of numbers separated by blanks, commas or lines, with #
+// comments. The result is sorted.
+func periodList(text string) ([]float64, error) {
+	words, err := listWords(text)
+	if err != nil {
+		return nil, err
+	}
+	periods := make([]float64, len(words))
+	for i, w := range words {
+		t, err := strconv.ParseFloat(strings.TrimSuffix(w, "s"), 64)
+		if err != nil || !(t > 0) {
+			return nil, usagef("--periods: %q is not a positive period in s", w)
+		}
+		periods[i] = t
+	}
+	return sortedSet("--periods", periods)
+}
+
+// dampingList reads damping ratios such as "0,2%,0.05", sorted.
+func dampingList(text string) ([]float64, error) {
+	words, err := listWords(text)
+	if err != nil {
+		return nil, err
+	}
+	dampings := make([]float64, len(words))
+	for i, w := range words {
+		if dampings[i], err = query.ParseDamping(w); err != nil {
+			return nil, err
+		}
+	}
+	return sortedSet("--dampings", dampings)
+}
+
+func listWords(text string) ([]string, error) {
+	if name, isFile := strings.CutPrefix(text, "@"); isFile {
+		data, err := os.ReadFile(name)
+		if err != nil {
+			return nil, fmt.Errorf("read list: %w", err)
+		}
+		text = withoutComments(string(data))
+	}
+	return strings.FieldsFunc(text, func(r rune) bool { return strings.ContainsRune(", \t\r\n;", r) }), nil
+}
+
+func withoutComments(text string) string {
+	var out strings.Builder
+	for line := range strings.Lines(text) {
+		line, _, _ = strings.Cut(line, "#")
+		out.WriteString(line + "\n")
+	}
+	return out.String()
+}
+
+func sortedSet(flag string, values []float64) ([]float64, error) {
+	if len(values) == 0 {
+		return nil, usagef("%s: the list is empty", flag)
+	}
+	slices.Sort(values)
+	for i := range values[1:] {
+		if values[i] == values[i+1] {
+			return nil, usagef("%s: %g stands twice in the list", flag, values[i])
+		}
+	}
+	return values, nil
+}
+
+// printer writes lines and keeps the first error.
+type printer struct {
+	w   io.Writer
+	err error
+}
+
+func (p *printer) printf(format string, args ...any) {
+	if p.err == nil {
+		_, p.err = fmt.Fprintf(p.w, format, args...)
+	}
+}

@@ -1,0 +1,229 @@
+package main
+
+import (
+	"context"
+	"encoding/json"
+	"fmt"
+	"io"
+	"os"
+	"time"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/ingest"
+	"swaybook/pipeline"
+)
+
+func ingestCommand() *cli.Command {
+	return &cli.Command{
+		Name:      "ingest",
+		Usage:     "read record files, compute their spectra, store both",
+		ArgsUsage: "PATH...",
+		Description: "Reads files and folders (with all that is below them). Files are recognised by their content.\n" +
+			"Running it again is harmless: content that the store holds is not read twice, and a run that was\n" +
+			"stopped is finished by the next one.",
+		Flags: []cli.Flag{
+			&cli.StringFlag{Name: "catalogue", Usage: "CSV `FILE` that joins or overrides metadata"},
+			&cli.StringFlag{Name: "unit", Usage: "`UNIT` of samples in files that state none: g, mg, gal, m/s2, cm/s2, mm/s2, in/s2, ft/s2"},
+			&cli.Float64Flag{Name: "dt", Usage: "time step in `S` of files that state none"},
+			&cli.StringFlag{Name: "periods", Usage: "periods of a new store's grid in s: a `LIST` such as 0.1,0.2,1 or @FILE"},
+			&cli.StringFlag{Name: "dampings", Usage: "damping ratios of a new store's grid, a `LIST` such as 2%,5%,0.1"},
+			&cli.IntFlag{Name: "workers", Usage: "files in work at the same time (default: one a processor)"},
+			&cli.BoolFlag{Name: "json", Usage: "print the summary as JSON"},
+		},
+		Action: func(c *cli.Context) error {
+			o, err := newIngestOptions(c)
+			if err != nil {
+				return err
+			}
+			return runIngest(c.Context, o, c.App.Writer)
+		},
+	}
+}
+
+type ingestOptions struct {
+	store    string
+	pipeline pipeline.Options
+	json     bool
+	monitor  *monitor
+}
+
+func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
+	if !c.Args().Present() {
+		return o, usagef("ingest needs at least one PATH")
+	}
+	logger, err := newLogger(c)
+	if err != nil {
+		return o, err
+	}
+	o.store, o.json = c.String("store"), c.Bool("json")
+	o.monitor = newMonitor(logger, c.App.ErrWriter, c.Bool("quiet"))
+	o.pipeline = pipelineOptions(o.store, o.monitor)
+	o.pipeline.Paths = c.Args().Slice()
+	o.pipeline.Workers = c.Int("workers")
+	if c.Int("workers") < 0 {
+		return o, usagef("--workers %d: want a positive number", c.Int("workers"))
+	}
+	if o.pipeline.Hints, err = ingestHints(c); err != nil {
+		return o, err
+	}
+	if o.pipeline.Grid, err = ingestGrid(c); err != nil {
+		return o, err
+	}
+	return o, o.readCatalogue(c.String("catalogue"))
+}
+
+func pipelineOptions(store string, m *monitor) pipeline.Options {
+	return pipeline.Options{
+		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file,
+		Own: map[string]string{store: "the store itself", store + "-wal": "the store's log", store + "-shm": "the store's log"},
+	}
+}
+
+func ingestHints(c *cli.Context) (ingest.Hints, error) {
+	h := ingest.Hints{
+		Unit: c.String("unit"), UnitFrom: "--unit", UnitForAll: true,
+		StepS: c.Float64("dt"), StepFrom: "--dt", StepForAll: true,
+	}
+	if h.Unit != "" {
+		if _, err := ingest.ParseUnit(h.Unit); err != nil {
+			return h, usagef("--unit: %w", err)
+		}
+	}
+	if c.IsSet("dt") && !(h.StepS > 0) {
+		return h, usagef("--dt %g: want a positive time step in s", h.StepS)
+	}
+	return h, nil
+}
+
+func ingestGrid(c *cli.Context) (g db.Grid, err error) {
+	if c.IsSet("periods") {
+		if g.PeriodsS, err = periodList(c.String("periods")); err != nil {
+			return g, err
+		}
+	}
+	if c.IsSet("dampings") {
+		g.Dampings, err = dampingList(c.String("dampings"))
+	}
+	return g, err
+}
+
+// readCatalogue loads the catalogue before anything is stored, so that a
+// mistake in it leaves no half-described records behind.
+func (o *ingestOptions) readCatalogue(name string) error {
+	if name == "" {
+		return nil
+	}
+	f, err := os.Open(name)
+	if err != nil {
+		return fmt.Errorf("read catalogue: %w", err)
+	}
+	defer f.Close()
+	o.pipeline.Own[name] = "the catalogue itself"
+	o.pipeline.Catalogue, err = ingest.ReadCatalogue(name, f)
+	return err
+}
+
+// runIngest fills the store and prints the summary.
+func runIngest(ctx context.Context, o ingestOptions, w io.Writer) error {
+	store, err := db.Create(ctx, o.store)
+	if err != nil {
+		return err
+	}
+	defer store.Close()
+	summary, err := pipeline.Run(ctx, store, o.pipeline)
+	o.monitor.finish()
+	if err != nil && summary.Files == 0 {
+		return err
+	}
+	report := newIngestReport(o, summary)
+	if errPrint := report.print(w, o.json); errPrint != nil && err == nil {
+		err = errPrint
+	}
+	switch {
+	case err != nil && ctx.Err() != nil:
+		return fmt.Errorf("%w: %d files are done; run the same command again to finish the rest", err, summary.Files)
+	case err != nil:
+		return err
+	case !summary.Complete():
+		return errRejected
+	}
+	return nil
+}
+
+// ingestReport is what the command prints, as text and as JSON.
+type ingestReport struct {
+	Store string `json:"store"`
+	pipeline.Summary
+	SkippedFiles  []fileNote `json:"skipped_files"`
+	RejectedFiles []fileNote `json:"rejected_files"`
+	// Omitted counts the notes beyond the limit that the lists keep.
+	Omitted int `json:"omitted_notes"`
+	// Catalogue lists what in the catalogue had no effect.
+	Catalogue []string `json:"catalogue_notes"`
+}
+
+// fileNote is one file that was not stored and why.
+type fileNote struct {
+	Source string `json:"source"`
+	Line   int    `json:"line,omitempty"`
+	Cause  string `json:"cause"`
+}
+
+func newIngestReport(o ingestOptions, summary pipeline.Summary) ingestReport {
+	m := o.monitor
+	r := ingestReport{Store: o.store, Summary: summary, SkippedFiles: m.skipped, RejectedFiles: m.rejected, Omitted: m.omitted, Catalogue: []string{}}
+	if c := o.pipeline.Catalogue; c != nil {
+		for _, column := range c.UnknownColumns {
+			r.Catalogue = append(r.Catalogue, "unknown column "+column.String())
+		}
+		for _, line := range c.Unmatched() {
+			r.Catalogue = append(r.Catalogue, fmt.Sprintf("line %d matches no file", line))
+		}
+	}
+	return r
+}
+
+func (r ingestReport) print(w io.Writer, asJSON bool) error {
+	if asJSON {
+		e := json.NewEncoder(w)
+		e.SetEscapeHTML(false)
+		e.SetIndent("", "  ")
+		return e.Encode(r)
+	}
+	p := &printer{w: w}
+	p.printf("%s: %d files seen in %.1f s\n", r.Store, r.Files, r.Seconds)
+	p.printf("  %7d components stored, from %d files, in %d new records\n", r.Stored, r.StoredFiles, r.Records)
+	p.printf("  %7d files already held\n", r.Held)
+	p.printf("  %7d files skipped: no ground acceleration\n", r.Skipped)
+	p.printf("  %7d files rejected\n", r.Rejected)
+	if r.Channels > 0 {
+		p.printf("  %7d channels rejected from files that were stored\n", r.Channels)
+	}
+	if r.Stored == 0 {
+		p.printf("Nothing new was stored.\n")
+	}
+	p.notes("Skipped", r.SkippedFiles)
+	p.notes("Rejected", r.RejectedFiles)
+	if r.Omitted > 0 {
+		p.printf("… and %d more; see: swaybook --store %s query records --rejected\n", r.Omitted, r.Store)
+	}
+	for _, note := range r.Catalogue {
+		p.printf("Catalogue: %s\n", note)
+	}
+	return p.err
+}
+
+func (p *printer) notes(title string, notes []fileNote) {
+	if len(notes) > 0 {
+		p.printf("%s:\n", title)
+	}
+	for _, n := range notes {
+		if n.Line > 0 {
+			p.printf("  %s:%d: %s\n", n.Source, n.Line, n.Cause)
+		} else {
+			p.printf("  %s: %s\n", n.Source, n.Cause)
+		}
+	}
+}

@@ -1,0 +1,131 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"os/signal"
+	"syscall"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/query"
+)
+
+// version is the program's own; the solver's version, on which comparability
+// depends, is kept with every store.
+const version = "0.1.0"
+
+// The exit codes. They are an interface: scripts branch on them.
+const (
+	exitDone        = 0
+	exitFailed      = 1
+	exitUsage       = 2
+	exitRejected    = 3 // done, but some files were rejected
+	exitInterrupted = 130
+)
+
+// errRejected ends a command that did its work although files were rejected.
+// What was rejected has been reported by then.
+var errRejected = errors.New("some files were rejected")
+
+// usageError is a mistake in the command line.
+type usageError struct{ err error }
+
+func (e *usageError) Error() string { return e.err.Error() }
+func (e *usageError) Unwrap() error { return e.err }
+
+func usagef(format string, args ...any) error {
+	return &usageError{fmt.Errorf(format, args...)}
+}
+
+func main() {
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	defer stop()
+	os.Exit(run(ctx, os.Args, os.Stdout, os.Stderr))
+}
+
+// run is the program without the process: it returns the exit code.
+func run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
+	app := newApp(stdout, stderr)
+	args, err := arrange(app, args)
+	if err == nil {
+		err = app.RunContext(ctx, args)
+	}
+	return exitCode(err, stderr)
+}
+
+// exitCode prints the error, if there is one to print, and ranks it.
+func exitCode(err error, stderr io.Writer) int {
+	if err == nil {
+		return exitDone
+	}
+	if errors.Is(err, errRejected) {
+		return exitRejected
+	}
+	fmt.Fprintln(stderr, "swaybook: "+err.Error())
+	if errors.Is(err, context.Canceled) {
+		return exitInterrupted
+	}
+	if _, ok := errors.AsType[*usageError](err); ok {
+		return exitUsage
+	}
+	if _, ok := errors.AsType[*query.UsageError](err); ok {
+		return exitUsage
+	}
+	return exitFailed
+}
+
+func newApp(stdout, stderr io.Writer) *cli.App {
+	app := &cli.App{
+		Name:    "swaybook",
+		Usage:   "response spectra of recorded ground motions, and what they demand of structures",
+		Version: version,
+		Description: "Reads record files into a store, computes their response spectra, and answers for a structure\n" +
+			"what displacement, base shear and base moment the recorded motions produced.\n\n" +
+			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected; 130 interrupted.\n\n" + caution,
+		Flags: globalFlags(),
+		Commands: []*cli.Command{
+			ingestCommand(),
+			queryCommand(),
+			exportCommand(),
+			demoCommand(),
+		},
+		Writer:         stdout,
+		ErrWriter:      stderr,
+		ExitErrHandler: func(*cli.Context, error) {}, // run decides the exit code
+		Action:         missingCommand,
+	}
+	app.OnUsageError = onUsageError
+	for _, c := range app.Commands {
+		setUsageHandling(c)
+	}
+	return app
+}
+
+// caution goes with everything that somebody might design by.
+const caution = query.Caution
+
+// setUsageHandling keeps the library from printing help on stdout and from
+// ending the process on a mistake.
+func setUsageHandling(c *cli.Command) {
+	c.OnUsageError = onUsageError
+	if len(c.Subcommands) > 0 {
+		c.Action = missingCommand
+	}
+	for _, sub := range c.Subcommands {
+		setUsageHandling(sub)
+	}
+}
+
+func onUsageError(_ *cli.Context, err error, _ bool) error { return &usageError{err} }
+
+// missingCommand answers where a command was expected.
+func missingCommand(c *cli.Context) error {
+	if name := c.Args().First(); name != "" {
+		return usagef("unknown command %q; see %s --help", name, c.App.Name)
+	}
+	return usagef("no command given; see %s --help", c.App.Name)
+}

@@ -1,0 +1,57 @@
+package main
+
+import (
+	"flag"
+	"os/exec"
+	"path/filepath"
+	"strconv"
+	"testing"
+
+	"github.com/rogpeppe/go-internal/testscript"
+)
+
+var update = flag.Bool("update", false, "rewrite the expectations of the scripts")
+
+func TestMain(m *testing.M) {
+	testscript.Main(m, map[string]func(){"swaybook": main})
+}
+
+// TestScripts runs the command line as people and scripts see it.
+func TestScripts(t *testing.T) {
+	testscript.Run(t, testscript.Params{
+		Dir:           filepath.Join("..", "..", "testdata", "script"),
+		UpdateScripts: *update,
+		Setup: func(env *testscript.Env) error {
+			records, err := filepath.Abs(filepath.Join("..", "..", "testdata", "records"))
+			env.Setenv("RECORDS", records)
+			return err
+		},
+		Cmds: map[string]func(*testscript.TestScript, bool, []string){"status": status},
+		Condition: func(cond string) (bool, error) {
+			// [sqlite3]: the command-line client of SQLite is installed.
+			_, err := exec.LookPath(cond)
+			return err == nil, nil
+		},
+	})
+}
+
+// status N COMMAND... runs the command and asserts its exit code, which exec
+// cannot do.
+func status(ts *testscript.TestScript, neg bool, args []string) {
+	if neg || len(args) < 2 {
+		ts.Fatalf("usage: status N command...")
+	}
+	want, err := strconv.Atoi(args[0])
+	ts.Check(err)
+	got := 0
+	if err := ts.Exec(args[1], args[2:]...); err != nil {
+		exit, ok := err.(*exec.ExitError)
+		if !ok {
+			ts.Fatalf("%v", err)
+		}
+		got = exit.ExitCode()
+	}
+	if got != want {
+		ts.Fatalf("exit code %d, want %d", got, want)
+	}
+}

@@ -1,0 +1,108 @@
+package main
+
+import (
+	"io"
+	"log/slog"
+	"os"
+	"time"
+
+	"github.com/schollz/progressbar/v3"
+	"golang.org/x/term"
+
+	"swaybook/pipeline"
+)
+
+const (
+	// logInterval paces the progress lines where stderr is no terminal.
+	logInterval = 10 * time.Second
+	// maxNotes bounds what a report keeps of single files; the store has all.
+	maxNotes = 200
+)
+
+// monitor shows a run's progress, as a bar on a terminal and as log lines
+// elsewhere, and keeps the notes for the report. Its methods are called by one
+// goroutine at a time.
+type monitor struct {
+	logger   *slog.Logger
+	stderr   io.Writer
+	terminal bool
+	quiet    bool
+	bar      *progressbar.ProgressBar
+	started  time.Time
+	logged   time.Time
+
+	skipped, rejected []fileNote
+	omitted           int
+}
+
+func newMonitor(logger *slog.Logger, stderr io.Writer, quiet bool) *monitor {
+	now := time.Now()
+	return &monitor{
+		logger: logger, stderr: stderr, terminal: isTerminal(stderr), quiet: quiet, started: now, logged: now,
+		skipped: []fileNote{}, rejected: []fileNote{},
+	}
+}
+
+func isTerminal(w io.Writer) bool {
+	f, ok := w.(*os.File)
+	return ok && term.IsTerminal(int(f.Fd()))
+}
+
+// file takes note of one file done.
+func (m *monitor) file(p pipeline.Progress) {
+	m.note(p.File)
+	switch {
+	case m.quiet:
+	case m.terminal:
+		m.showBar(p)
+	case time.Since(m.logged) >= logInterval:
+		m.logged = time.Now()
+		rate := float64(p.Done) / time.Since(m.started).Seconds()
+		left := time.Duration(float64(p.Total-p.Done) / rate * float64(time.Second)).Round(time.Second)
+		m.logger.Info("ingesting", "files", p.Done, "of", p.Total, "components", p.Components, "files_per_s", int(rate), "left", left.String())
+	}
+}
+
+func (m *monitor) note(f pipeline.FileReport) {
+	if f.Outcome == pipeline.Skipped {
+		m.keep(&m.skipped, fileNote{Source: f.Path, Cause: f.Reason})
+	}
+	for _, c := range f.Causes {
+		m.keep(&m.rejected, fileNote{Source: f.Path, Line: c.Line, Cause: c.Text})
+	}
+	// A line in the middle of the bar would tear it; the report repeats both.
+	if m.terminal {
+		return
+	}
+	for _, c := range f.Causes {
+		m.logger.Warn("rejected", "file", f.Path, "line", c.Line, "cause", c.Text)
+	}
+	for _, text := range f.Warnings {
+		m.logger.Warn("doubtful", "file", f.Path, "warning", text)
+	}
+}
+
+func (m *monitor) keep(list *[]fileNote, n fileNote) {
+	if len(*list) >= maxNotes {
+		m.omitted++
+		return
+	}
+	*list = append(*list, n)
+}
+
+func (m *monitor) showBar(p pipeline.Progress) {
+	if m.bar == nil {
+		m.bar = progressbar.NewOptions(p.Total,
+			progressbar.OptionSetWriter(m.stderr), progressbar.OptionSetDescription("ingesting"), progressbar.OptionShowCount(),
+			progressbar.OptionShowIts(), progressbar.OptionSetItsString("files"), progressbar.OptionSetPredictTime(true),
+			progressbar.OptionThrottle(100*time.Millisecond), progressbar.OptionClearOnFinish(), progressbar.OptionFullWidth())
+	}
+	m.bar.Set(p.Done) // the bar's own errors are a terminal that went away
+}
+
+// finish clears the bar.
+func (m *monitor) finish() {
+	if m.bar != nil {
+		m.bar.Clear()
+	}
+}

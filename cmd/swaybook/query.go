@@ -1,0 +1,233 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/query"
+)
+
+func queryCommand() *cli.Command {
+	return &cli.Command{
+		Name:        "query",
+		Usage:       "ask the store: spectra, demands, records",
+		Subcommands: []*cli.Command{querySpectrumCommand(), queryDemandCommand(), queryRecordsCommand()},
+	}
+}
+
+// selectionFlags say which motions a question is about. The texts name the
+// defaults, which differ between questions.
+func selectionFlags(component, siting string) []cli.Flag {
+	return []cli.Flag{
+		&cli.StringFlag{Name: "where", Usage: "boolean `EXPR` over attributes, such as 'magnitude >= 6 and distance_km < 30'"},
+		&cli.StringFlag{Name: "component", Usage: component},
+		&cli.StringFlag{Name: "siting", Usage: siting},
+	}
+}
+
+func statisticsFlags() []cli.Flag {
+	flags := selectionFlags(
+		"each, h1, h2, v, geomean or larger (default: geomean, of the two horizontals)",
+		"what instruments stand on: ground (free-field, ground, and where unknown), free-field, structure, borehole, unknown, all, or a list (default: ground)")
+	return append(flags,
+		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
+		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
+		&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
+		&cli.StringFlag{Name: "method", Value: "nigam-jennings", Usage: "nigam-jennings (exact) or newmark-average (for comparison, computed from the samples)"},
+	)
+}
+
+func formatFlag(choices string) cli.Flag {
+	return &cli.StringFlag{Name: "format", Value: "table", Usage: choices}
+}
+
+// newSelection reads the selection flags.
+func newSelection(c *cli.Context, component func(string) (query.Component, error), siting func(string) (query.Siting, error)) (s query.Selection, err error) {
+	s.Where = c.String("where")
+	if s.Component, err = component(c.String("component")); err != nil {
+		return s, err
+	}
+	s.Siting, err = siting(c.String("siting"))
+	return s, err
+}
+
+func querySpectrumCommand() *cli.Command {
+	return &cli.Command{
+		Name:  "spectrum",
+		Usage: "statistics of the response spectra of recorded motions, period by period",
+		Flags: append(statisticsFlags(),
+			&cli.StringFlag{Name: "measure", Usage: "sd, psv or psa (default: psa)"},
+			&cli.StringFlag{Name: "band", Usage: "periods of the grid to show, `FROM:TO` in s"},
+			&cli.StringFlag{Name: "periods", Usage: "periods to show instead of the grid's, a `LIST` in s; computed from the samples where off the grid"},
+			formatFlag("table, csv or json"),
+		),
+		Action: func(c *cli.Context) error {
+			o, err := newSpectrumOptions(c)
+			if err != nil {
+				return err
+			}
+			return withStore(c, func(ctx context.Context, store *db.Store) error {
+				return runSpectrum(ctx, store, o, c.App.Writer, c.App.ErrWriter)
+			})
+		},
+	}
+}
+
+type spectrumOptions struct {
+	question query.SpectrumQuestion
+	format   query.Format
+	units    query.Units
+}
+
+func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
+	q := &o.question
+	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
+	return o, errors.Join(err, noArguments(c),
+		parseInto(&q.Damping, c, "damping", query.ParseDamping),
+		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
+		parseInto(&q.Method, c, "method", query.ParseMethod),
+		parseInto(&q.Measure, c, "measure", query.ParseMeasure),
+		parseInto(&q.Band, c, "band", query.ParseBand),
+		parseInto(&q.PeriodsS, c, "periods", query.ParsePeriods),
+		parseInto(&o.units, c, "units", query.ParseUnits),
+		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
+	)
+}
+
+// parseInto reads a flag's text into dst.
+func parseInto[T any](dst *T, c *cli.Context, flag string, parse func(string) (T, error)) (err error) {
+	*dst, err = parse(c.String(flag))
+	return err
+}
+
+func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, stderr io.Writer) error {
+	answer, err := o.question.Ask(ctx, store)
+	if err != nil {
+		return err
+	}
+	if o.format == query.FormatCSV {
+		fmt.Fprint(stderr, answer.Remarks())
+	}
+	return answer.Write(w, o.format, o.units)
+}
+
+func queryDemandCommand() *cli.Command {
+	return &cli.Command{
+		Name:  "demand",
+		Usage: "what recorded motions demand of a structure: displacement, base shear, base moment, energy",
+		Description: "The structure is a single mass: give its period, or its stiffness and mass (or weight). Base shear and energy\n" +
+			"need the mass, the base moment the height too.",
+		Flags: append(statisticsFlags(),
+			&cli.StringFlag{Name: "period", Usage: "undamped natural period, such as 0.8s"},
+			&cli.StringFlag{Name: "stiffness", Usage: "lateral stiffness, such as 4MN/m or 20kip/in"},
+			&cli.StringFlag{Name: "weight", Usage: "weight, such as 500kN or 120kip"},
+			&cli.StringFlag{Name: "mass", Usage: "mass, such as 52000kg or 52t"},
+			&cli.StringFlag{Name: "height", Usage: "height of the mass above the base, such as 6m or 20ft"},
+			&cli.StringFlag{Name: "band", Usage: "show the envelope over T·(1±BAND) too, such as 10%"},
+			formatFlag("table or json"),
+		),
+		Action: func(c *cli.Context) error {
+			o, err := newDemandOptions(c)
+			if err != nil {
+				return err
+			}
+			return withStore(c, func(ctx context.Context, store *db.Store) error {
+				return runDemand(ctx, store, o, c.App.Writer)
+			})
+		},
+	}
+}
+
+type demandOptions struct {
+	question query.DemandQuestion
+	format   query.Format
+	units    query.Units
+}
+
+func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
+	q := &o.question
+	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
+	if err != nil {
+		return o, err
+	}
+	q.Structure, err = query.ParseStructure(query.StructureText{
+		Period: c.String("period"), Stiffness: c.String("stiffness"), Mass: c.String("mass"), Weight: c.String("weight"),
+		Damping: c.String("damping"), Height: c.String("height"),
+	})
+	return o, errors.Join(err, noArguments(c),
+		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
+		parseInto(&q.Method, c, "method", query.ParseMethod),
+		parseInto(&q.BandWidth, c, "band", query.ParseBandWidth),
+		parseInto(&o.units, c, "units", query.ParseUnits),
+		parseInto(&o.format, c, "format", func(s string) (query.Format, error) {
+			return query.ParseFormat(s, query.FormatTable, query.FormatJSON)
+		}),
+	)
+}
+
+func runDemand(ctx context.Context, store *db.Store, o demandOptions, w io.Writer) error {
+	answer, err := o.question.Ask(ctx, store)
+	if err != nil {
+		return err
+	}
+	return answer.Write(w, o.format, o.units)
+}
+
+func queryRecordsCommand() *cli.Command {
+	return &cli.Command{
+		Name:  "records",
+		Usage: "what is held, or what was rejected and why",
+		Flags: append(selectionFlags("h1, h2 or v (default: all)", "as for query spectrum (default: all)"),
+			&cli.BoolFlag{Name: "rejected", Usage: "list what could not be stored, and why"},
+			formatFlag("table, csv or json"),
+		),
+		Action: func(c *cli.Context) error {
+			o, err := newRecordsOptions(c)
+			if err != nil {
+				return err
+			}
+			return withStore(c, func(ctx context.Context, store *db.Store) error {
+				return runRecords(ctx, store, o, c.App.Writer, c.App.ErrWriter)
+			})
+		},
+	}
+}
+
+type recordsOptions struct {
+	question query.RecordsQuestion
+	rejected bool
+	format   query.Format
+}
+
+func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
+	o.rejected = c.Bool("rejected")
+	if o.rejected && (c.IsSet("where") || c.IsSet("component") || c.IsSet("siting")) {
+		return o, usagef("--rejected lists files, which have no attributes to select by")
+	}
+	o.question.Selection, err = newSelection(c, query.ParseStoredComponent, query.ParseStoredSiting)
+	return o, errors.Join(err, noArguments(c),
+		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }))
+}
+
+func runRecords(ctx context.Context, store *db.Store, o recordsOptions, w, stderr io.Writer) error {
+	if o.rejected {
+		answer, err := query.Rejections(ctx, store)
+		if err != nil {
+			return err
+		}
+		return answer.Write(w, o.format)
+	}
+	answer, err := o.question.Ask(ctx, store)
+	// A list may be empty: that is an answer, whose reason goes to people.
+	if empty, ok := errors.AsType[*query.EmptyError](err); ok {
+		fmt.Fprintln(stderr, empty)
+	} else if err != nil {
+		return err
+	}
+	return answer.Write(w, o.format)
+}
