@@ -136,6 +136,39 @@ func TestOrdinatesRoundTrip(t *testing.T) {
 	}
 }
 
+// Every double comes back, whatever its size and digits.
+func TestOrdinatesOfAllSizesRoundTrip(t *testing.T) {
+	const seed = 5
+	rng := rand.New(rand.NewPCG(seed, 1))
+	values := make([]float64, 1000)
+	got := make([]float64, len(values))
+	for round := range 300 {
+		for i := range values {
+			switch bits := rng.Uint64(); i % 4 {
+			case 0: // any double
+				values[i] = math.Float64frombits(bits)
+			case 1: // of the size of spectra
+				values[i] = math.Exp(60*rng.Float64() - 55)
+			case 2: // next to a power of two
+				values[i] = math.Float64frombits(uint64(900+bits%200)<<52 - 2 + bits>>40%4)
+			case 3: // next to a power of ten
+				values[i] = math.Nextafter(math.Pow10(int(bits%60)-50), float64(bits%2))
+			}
+			if math.IsNaN(values[i]) || math.IsInf(values[i], 0) {
+				values[i] = 0
+			}
+		}
+		if err := decodeOrdinates(got, encodeOrdinates(nil, values)); err != nil {
+			t.Fatalf("seed %d, round %d: %v", seed, round, err)
+		}
+		for i, x := range values {
+			if math.Float64bits(got[i]) != math.Float64bits(x) {
+				t.Fatalf("seed %d, round %d: %v comes back as %v", seed, round, x, got[i])
+			}
+		}
+	}
+}
+
 func BenchmarkEncodeSamples(b *testing.B) {
 	samples := motion(8000, 6, 0.01)
 	b.SetBytes(int64(8 * len(samples)))
@@ -145,7 +178,10 @@ func BenchmarkEncodeSamples(b *testing.B) {
 }
 
 func BenchmarkDecodeOrdinates(b *testing.B) {
-	values := motion(251, 17, 1)
+	values := make([]float64, 251)
+	for i := range values {
+		values[i] = math.Exp(-float64(i) / 17)
+	}
 	text := encodeOrdinates(nil, values)
 	b.SetBytes(int64(8 * len(values)))
 	for b.Loop() {

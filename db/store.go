@@ -63,7 +63,7 @@ func (s *Store) Close() error {
 func (s *Store) Path() string { return s.path }
 
 func openWriter(ctx context.Context, path string) (*Store, error) {
-	write, err := sql.Open("sqlite", dsn(path, "rwc", "_txlock=immediate"))
+	write, err := sql.Open("sqlite", dsn(path, "rwc", "_txlock=immediate&_pragma=cache_size(-32768)"))
 	if err != nil {
 		return nil, err
 	}
@@ -132,8 +132,11 @@ func openReader(ctx context.Context, path string) (*Store, error) {
 	return openWriter(ctx, path)
 }
 
+// openPool opens the connections for reading. A question reads most pages once:
+// a large cache would only cost the time to touch its memory, which was 40 % of
+// a query over 3300 components.
 func openPool(path string) (*sql.DB, error) {
-	return sql.Open("sqlite", dsn(path, "rw", "_pragma=query_only(1)"))
+	return sql.Open("sqlite", dsn(path, "rw", "_pragma=query_only(1)&_pragma=cache_size(-2048)"))
 }
 
 // dsn is a file: URI, since a plain path would drop the mode without a word.
@@ -143,7 +146,7 @@ func openPool(path string) (*sql.DB, error) {
 // a power cut and can lose the last batches only whole.
 func dsn(path, mode string, more string) string {
 	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)"+
-		"&_pragma=synchronous(normal)&_pragma=cache_size(-32768)", busyTimeoutMS)
+		"&_pragma=synchronous(normal)", busyTimeoutMS)
 	u := url.URL{Scheme: "file", Opaque: url.PathEscape(filepath.ToSlash(path))}
 	return u.String() + "?mode=" + mode + "&" + pragmas + "&" + more
 }

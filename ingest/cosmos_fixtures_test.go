@@ -36,7 +36,7 @@ func (s cosmosSample) text() []string {
 	if s.low == 0 {
 		filter = "Unfiltered"
 	}
-	fifth := fmt.Sprintf("Statn No: 99- 4711   Code:XQ-T4711  INV  Thistle Bend - Weir Road School")
+	fifth := "Statn No: 99- 4711   Code:XQ-T4711  INV  Thistle Bend - Weir Road School"
 	sixth := "Coords: 36.5000  -121.2500   Site geology: invented alluvium"
 	if s.old {
 		fifth = "Statn No: 99- 4711   Code:XQ-T4711  36.5000N, 121.2500W"

@@ -168,9 +168,7 @@ func TestKNETSpellings(t *testing.T) {
 // TestKNETUnknownEvent reads a file that no earthquake was assigned to.
 func TestKNETUnknownEvent(t *testing.T) {
 	lines := knetNS.lines()
-	for i, label := range []string{"Origin Time", "Lat.", "Long.", "Depth. (km)", "Mag."} {
-		lines[i] = label
-	}
+	copy(lines, []string{"Origin Time", "Lat.", "Long.", "Depth. (km)", "Mag."})
 	lines[9] = "Record Time"
 	_, channels, err := parseLines(lines, Hints{})
 	if err != nil {

@@ -173,11 +173,10 @@ func (l layout) number(field, scratch []byte) (float64, bool) {
 }
 
 var (
-	thousands  = regexp.MustCompile(`^[-+]?\d{1,3}(,\d{3})+\.\d*$|^[-+]?\d{1,3}(\.\d{3})+,\d*$`)
-	spaced     = regexp.MustCompile(`^[-+]?\d{1,3}( \d{3})+[.,]\d*$`)
-	timeOfDay  = regexp.MustCompile(`^['"]?(\d{4}-\d{2}-\d{2}[T ]?)?(\d{1,2}:\d{2}(:\d{2})?)?`)
-	innerSign  = regexp.MustCompile(`[0-9.][-+−][0-9.]`)
-	moreBlanks = regexp.MustCompile(`\s+`)
+	thousands = regexp.MustCompile(`^[-+]?\d{1,3}(,\d{3})+\.\d*$|^[-+]?\d{1,3}(\.\d{3})+,\d*$`)
+	spaced    = regexp.MustCompile(`^[-+]?\d{1,3}( \d{3})+[.,]\d*$`)
+	timeOfDay = regexp.MustCompile(`^['"]?(\d{4}-\d{2}-\d{2}[T ]?)?(\d{1,2}:\d{2}(:\d{2})?)?`)
+	innerSign = regexp.MustCompile(`[0-9.][-+−][0-9.]`)
 )
 
 // badLine says what is wrong with a line that no layout reads.

@@ -42,15 +42,6 @@ func newLogger(c *cli.Context) (*slog.Logger, error) {
 	return nil, usagef("--log %s: want text or json", c.String("log"))
 }
 
-// oneOf returns the flag's value, which must be one of the choices.
-func oneOf(c *cli.Context, flag string, choices ...string) (string, error) {
-	value := c.String(flag)
-	if !slices.Contains(choices, value) {
-		return "", usagef("--%s %s: want one of %s", flag, value, strings.Join(choices, ", "))
-	}
-	return value, nil
-}
-
 // noArguments refuses words that a command would silently ignore.
 func noArguments(c *cli.Context) error {
 	if c.Args().Present() {
@@ -63,7 +54,7 @@ func noArguments(c *cli.Context) error {
 func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
 	store, err := db.Open(c.Context, c.String("store"))
 	if errors.Is(err, db.ErrNoStore) {
-		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH...", err, c.String("store"))
+		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH", err, c.String("store"))
 	}
 	if err != nil {
 		return err

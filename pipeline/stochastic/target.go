@@ -2,11 +2,6 @@ package stochastic
 
 import "math"
 
-// filterOrder is the order of the Butterworth filters of the target. Second
-// order is the lowest whose low cut leaves the displacement without a permanent
-// offset, and the lower the order the shorter the filter rings.
-const filterOrder = 2
-
 // FourierTarget returns the Fourier amplitude of acceleration, in m/s, that the
 // parameters give at frequencyHz ≥ 0:
 //
@@ -74,8 +69,10 @@ func (t *target) at(f float64) float64 {
 	return y
 }
 
-// butterworth returns the amplitude 1/√(1 + r^(2·filterOrder)) of a filter at the
-// ratio r of frequency and corner, or of corner and frequency.
+// butterworth returns the amplitude 1/√(1 + r⁴) of a second-order Butterworth
+// filter at the ratio r of frequency and corner, or of corner and frequency.
+// Second order is the lowest whose low cut leaves the displacement without a
+// permanent offset, and the lower the order the shorter the filter rings.
 func butterworth(r float64) float64 {
 	r2 := r * r
 	return 1 / math.Sqrt(1+float64(r2*r2))
