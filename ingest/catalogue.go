@@ -93,7 +93,8 @@ const maxCatalogueErrors = 20
 //	station_name station_latitude station_longitude elevation_m vs30_m_s
 //	siting instrument azimuth_deg unit dt_s low_cut_hz high_cut_hz
 //
-// Blank and -999 mean not stated. Times are RFC 3339 or a date. The error joins
+// Rows may repeat what they say of an event or a station, and may not contradict
+// each other in it. Blank and -999 mean not stated. Times are RFC 3339 or a date. The error joins
 // one *ParseError for each cell, row or header that is wrong, the first 20 of
 // them, with name as their path.
 func ReadCatalogue(name string, r io.Reader) (*Catalogue, error) {
@@ -133,7 +134,7 @@ func readCatalogue(r io.Reader) (*Catalogue, []*ParseError) {
 	for {
 		cells, err := table.Read()
 		if err == io.EOF {
-			return c, faults
+			return c, append(faults, c.contradictions()...)
 		}
 		if err != nil {
 			return nil, append(faults, csvFault(err))

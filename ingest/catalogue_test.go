@@ -175,10 +175,7 @@ func TestCataloguePrecedence(t *testing.T) {
 		"sub/*.txt,,,N,5,",
 		"*.txt,,,,6,",
 		"?.txt,,,,7,",
-		",e1,s1,NS,8,",
-		",E1,S1,,9,",
-		",e1,,NS,10,",
-		",e1,,,11,",
+		",e1,s1,,8,",
 	}
 	// Later lines come before earlier ones of the same rank.
 	for from := range rows {
@@ -192,10 +189,32 @@ func TestCataloguePrecedence(t *testing.T) {
 			t.Errorf("without the first %d rows: magnitude %+v %q, want %d of unknown type", from, ch.Event.Magnitude, ch.Event.MagnitudeType, from+1)
 		}
 	}
+	pair := Channel{Event: Event{ID: "e1"}, Station: Station{Code: "s1"}, Orientation: Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(0), Label: "N-S"}}
+	catalogueOf(t, "event,station,component,distance_km", "E1,S1,,9", "e1,s1,NS,8").Apply("sub/a.txt", &pair)
+	if pair.DistanceKM != Known(8) {
+		t.Errorf("distance %+v, want that of the row that names the component", pair.DistanceKM)
+	}
 	c := catalogueOf(t, header, "b.txt,,,,1,", "sub2/a.txt,,,,1,", "a.txt,,,EW,1,", ",e2,,,1,", ",e1,s2,,1,", ",,,,,")
 	ch := Channel{Event: Event{ID: "e1"}, Station: Station{Code: "s1"}, Orientation: vertical}
 	if c.Apply("sub/a.txt", &ch) || !slices.Equal(c.Unmatched(), []int{2, 3, 4, 5, 6}) {
 		t.Errorf("rows of others fit: %+v, unmatched %v", ch, c.Unmatched())
+	}
+}
+
+// Two rows that contradict each other in an event or a station are refused: the
+// order of the files would decide between them.
+func TestCatalogueContradictions(t *testing.T) {
+	cases := map[string]string{
+		"file,event,magnitude\na,E1,6.1\nb,e1,6.1\nc,E1,6.5":                       "c.csv:4: magnitude: event E1: 6.5 here, 6.1 in line 2",
+		"file,event,origin_time\na,E1,2041-03-03T23:12:07Z\n,E1,2041-03-03":        "c.csv:3: origin_time: event E1: 2041-03-03T00:00:00Z here, 2041-03-03T23:12:07Z in line 2",
+		"event,station,network,vs30_m_s\nE1,S1,XX,300\nE2,S1,XX,310":               "c.csv:3: vs30_m_s: station XX.S1: 310 here, 300 in line 2",
+		"event,station,network,vs30_m_s\nE1,S1,XX,300\nE2,S1,YY,310\nE3,S1,XX,300": "",
+	}
+	for text, want := range cases {
+		_, err := ReadCatalogue("c.csv", strings.NewReader(text))
+		if got := fmt.Sprint(err); want == "" && err != nil || want != "" && got != want {
+			t.Errorf("%q: %v, want %s", text, err, want)
+		}
 	}
 }
 
