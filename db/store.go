@@ -106,9 +106,15 @@ func switchToLog(ctx context.Context, write *sql.DB) (mode string, err error) {
 	}
 }
 
-func isBusy(err error) bool {
-	e, ok := errors.AsType[*sqlite.Error](err)
-	return ok && e.Code()&0xff == sqlite3.SQLITE_BUSY
+func isBusy(err error) bool { return codeOf(err) == sqlite3.SQLITE_BUSY }
+
+// codeOf returns SQLite's primary result code of an error, 0 where there is
+// none.
+func codeOf(err error) int {
+	if e, ok := errors.AsType[*sqlite.Error](err); ok {
+		return e.Code() & 0xff
+	}
+	return 0
 }
 
 func openReader(ctx context.Context, path string) (*Store, error) {
@@ -120,6 +126,9 @@ func openReader(ctx context.Context, path string) (*Store, error) {
 		return nil, err
 	}
 	current, err := isCurrent(ctx, read)
+	if isReadOnly(err) && !hasLog(path) {
+		return openFrozen(ctx, path, read)
+	}
 	if err != nil {
 		return nil, errors.Join(explain(err), read.Close())
 	}
@@ -130,6 +139,38 @@ func openReader(ctx context.Context, path string) (*Store, error) {
 		return nil, err
 	}
 	return openWriter(ctx, path)
+}
+
+// openFrozen opens a store that this process may not write to, nor its folder,
+// where the log would be. Nobody is writing to it as long as there is no log.
+func openFrozen(ctx context.Context, path string, denied *sql.DB) (*Store, error) {
+	if err := denied.Close(); err != nil {
+		return nil, err
+	}
+	read, err := sql.Open("sqlite", dsn(path, "ro", "immutable=1&_pragma=query_only(1)"))
+	if err != nil {
+		return nil, err
+	}
+	current, err := isCurrent(ctx, read)
+	if err == nil && !current {
+		err = errors.New("it was made by an earlier program and has to be brought up to date, but is read-only")
+	}
+	if err != nil {
+		return nil, errors.Join(explain(err), read.Close())
+	}
+	return &Store{path: path, read: read}, nil
+}
+
+// isReadOnly reports whether SQLite could not write where it had to.
+func isReadOnly(err error) bool {
+	code := codeOf(err)
+	return code == sqlite3.SQLITE_READONLY || code == sqlite3.SQLITE_CANTOPEN
+}
+
+// hasLog reports whether changes wait in the store's write-ahead log.
+func hasLog(path string) bool {
+	info, err := os.Stat(path + "-wal")
+	return err == nil && info.Size() > 0
 }
 
 // openPool opens the connections for reading. A question reads most pages once:
@@ -162,6 +203,8 @@ func explain(err error) error {
 		return fmt.Errorf("the file is not a swaybook store: %w", err)
 	case strings.Contains(text, "unable to open database file"):
 		return fmt.Errorf("the file or its folder cannot be opened: %w", err)
+	case strings.Contains(text, "readonly database"):
+		return fmt.Errorf("the file or its folder may not be written to: %w", err)
 	}
 	return err
 }

@@ -24,6 +24,11 @@ func NewText(data []byte) (*Text, error) {
 	if len(data) == 0 {
 		return nil, refuse(0, "", "file is empty")
 	}
+	for _, p := range packed {
+		if bytes.HasPrefix(data, []byte(p.magic)) {
+			return nil, refuse(0, "", "file is a %s: unpack it first", p.name)
+		}
+	}
 	data, err := decode(data)
 	if err != nil {
 		return nil, err
@@ -57,6 +62,11 @@ func (t *Text) Bytes(n int) []byte {
 		return nil
 	}
 	return t.lines[n-1]
+}
+
+// packed are the first bytes of archives that people take for records.
+var packed = []struct{ magic, name string }{
+	{"\x1f\x8b", "gzip file"}, {"PK\x03\x04", "zip archive"}, {"BZh", "bzip2 file"}, {"\xfd7zXZ", "xz file"},
 }
 
 func decode(data []byte) ([]byte, error) {

@@ -3,6 +3,8 @@ package pipeline
 import (
 	"context"
 	"errors"
+	"fmt"
+	"math"
 	"reflect"
 
 	"swaybook/db"
@@ -30,10 +32,12 @@ func (r *reader) held(ctx context.Context, file ingest.Found, res result, first 
 		if err != nil {
 			return err
 		}
+		hints := r.catalogue.Hints(file.Rel, ingest.Hints{})
 		for _, c := range components {
 			if u, changed := r.compare(file, c); changed {
 				res.updates = append(res.updates, u)
 			}
+			res.warnings = append(res.warnings, tooLate(hints, c)...)
 		}
 		return nil
 	})
@@ -41,6 +45,19 @@ func (r *reader) held(ctx context.Context, file ingest.Found, res result, first 
 		err = nil
 	}
 	return res, err
+}
+
+// tooLate says where the catalogue gives a held file another unit or time step
+// than the one with which it was read: its samples are not read again.
+func tooLate(hints ingest.Hints, c db.HeldComponent) []string {
+	var out []string
+	if unit, err := ingest.ParseUnit(hints.Unit); err == nil && unit.Name != c.Unit {
+		out = append(out, fmt.Sprintf("%s says unit %s, but the file is held as %s: ingest it into a new store (--store) to change that", hints.UnitFrom, unit.Name, c.Unit))
+	}
+	if hints.StepS != 0 && math.Abs(hints.StepS-c.StepS) > 1e-3*c.StepS {
+		out = append(out, fmt.Sprintf("%s says a time step of %g s, but the file is held with %g s: ingest it into a new store (--store) to change that", hints.StepFrom, hints.StepS, c.StepS))
+	}
+	return out
 }
 
 // compare applies the catalogue to a held component's description.

@@ -48,20 +48,28 @@ func place(ctx context.Context, tx *db.Tx, src db.Source, stem string, c *ingest
 	}
 	suffix := apartFrom(*rival, src, c)
 	if suffix == "" {
-		return placement{}, takenError(code, *rival)
+		return placement{}, takenError(code, *rival, src, c)
 	}
 	code += suffix
 	if r, _, err = tx.FindRecord(ctx, code); err != nil {
 		return placement{}, err
 	}
 	if p, rival = join(code, r, c); rival != nil {
-		return placement{}, takenError(code, *rival)
+		return placement{}, takenError(code, *rival, src, c)
 	}
 	return p, nil
 }
 
-func takenError(code string, rival db.Component) error {
-	return fmt.Errorf("record %s holds this direction already (%s, from %s): another version of the same channel? Keep one of them",
+// takenError says what the channel stands in the way of, and what to do.
+func takenError(code string, rival db.Component, src db.Source, c *ingest.Channel) error {
+	switch {
+	case rival.SourcePath == src.Path:
+		return fmt.Errorf("record %s holds an earlier content of this file: files are not replaced; ingest into a new store (--store) to use the new one", code)
+	case c.Orientation.Axis == ingest.AxisUnknown || rival.Axis == axes[ingest.AxisUnknown]:
+		return fmt.Errorf("record %s holds a component of %s, and one of the two states no direction: name it in the file or by the catalogue's component or azimuth_deg column",
+			code, rival.SourcePath)
+	}
+	return fmt.Errorf("record %s holds this direction already (%s, from %s): another version of the same channel? The store keeps the first; leave one out and ingest into a new store to choose",
 		code, rival.Role, rival.SourcePath)
 }
 

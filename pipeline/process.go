@@ -35,6 +35,7 @@ type result struct {
 	err      error  // why it was rejected
 	channels []solved
 	updates  []update // what the catalogue changes of held content
+	warnings []string // what the catalogue can no longer change of it
 }
 
 // solved is one channel with what was computed of it.

@@ -3,7 +3,6 @@ package pipeline
 import (
 	"context"
 	"errors"
-	"fmt"
 	"runtime"
 	"time"
 
@@ -148,7 +147,7 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 		return err
 	})
 	if err != nil {
-		return state{}, fmt.Errorf("begin run: %w", err)
+		return state{}, err
 	}
 	s.reader = newReader(store, opts, s.generation.Grid)
 	return s, nil

@@ -3,6 +3,7 @@ package pipeline
 import (
 	"context"
 	"errors"
+	"slices"
 	"time"
 
 	"swaybook/db"
@@ -98,7 +99,7 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 }
 
 func (w *writer) storeFile(ctx context.Context, tx *db.Tx, res result) (FileReport, error) {
-	report := FileReport{Path: res.source.Path, Outcome: res.outcome, Reason: res.reason}
+	report := FileReport{Path: res.source.Path, Outcome: res.outcome, Reason: res.reason, Warnings: res.warnings}
 	// Two files of equal content may have been read at the same time.
 	if res.outcome == Stored {
 		first, held, err := tx.Held(ctx, res.source.SHA256)
@@ -226,7 +227,9 @@ func (w *writer) reject(ctx context.Context, tx *db.Tx, res result, report FileR
 	if pe, ok := errors.AsType[*ingest.ParseError](cause); ok {
 		r.Line, r.Cause = pe.Line, pe.Cause()
 	}
-	report.Causes = append(report.Causes, Cause{Line: r.Line, Text: r.Cause})
+	if c := (Cause{Line: r.Line, Text: r.Cause}); !slices.Contains(report.Causes, c) {
+		report.Causes = append(report.Causes, c)
+	}
 	return report, tx.Reject(ctx, r, w.run.id)
 }
 

@@ -28,6 +28,7 @@ type EmptyError struct {
 	Held    int       // records in the store
 	Unmet   int       // records that do not meet the expression
 	LeftOut []LeftOut // records left out for another reason
+	Hint    string    // what to try, or ""
 }
 
 // Error gives the counts and reasons in one line.
@@ -39,11 +40,10 @@ func (e *EmptyError) Error() string {
 	for _, l := range e.LeftOut {
 		parts = append(parts, l.String())
 	}
-	head := "nothing selected: the store holds " + countOf(e.Held, "record", "records")
-	if len(parts) == 0 {
-		return head
+	if e.Hint != "" {
+		parts = append(parts, e.Hint)
 	}
-	return head + "; " + strings.Join(parts, "; ")
+	return strings.Join(append([]string{"nothing selected: the store holds " + countOf(e.Held, "record", "records")}, parts...), "; ")
 }
 
 // LeftOut counts the records that one reason kept out of a selection.

@@ -82,12 +82,12 @@ func TestQuantityMistakes(t *testing.T) {
 	}{
 		{ParsePeriod, "1.6", `period: "1.6" has no unit; write one of s, ms behind the number`},
 		{ParsePeriod, "1.6 h", `period: unknown unit "h" in "1.6 h"; accepted: s, ms`},
-		{ParsePeriod, "", `period: "" does not start with a number such as 1.6 (decimal point, no thousands separators)`},
+		{ParsePeriod, "", `period: "" does not start with a number such as 1.35 (decimal point, no thousands separators)`},
 		{ParsePeriod, "-1s", `period: "-1s" is not a positive number in range`},
 		{ParsePeriod, "0s", `period: "0s" is not a positive number in range`},
 		{ParsePeriod, "1e999999999s", `period: "1e999999999s" is out of range`},
 		{ParsePeriod, "1e-999999999s", `period: "1e-999999999s" is not a positive number in range`},
-		{ParsePeriod, "NaNs", `period: "NaNs" does not start with a number such as 1.6 (decimal point, no thousands separators)`},
+		{ParsePeriod, "NaNs", `period: "NaNs" does not start with a number such as 1.35 (decimal point, no thousands separators)`},
 		{ParsePeriod, "1,6s", `period: unknown unit ",6s" in "1,6s"; accepted: s, ms`},
 		{ParseMass, "260kN", `mass: unknown unit "kN" in "260kN"; accepted: kg, t, Mg, lb, lbm`},
 		{ParseWeight, "4100kg", `weight: unknown unit "kg" in "4100kg"; accepted: N, kN, MN, kgf, tf, lbf, lb, kip, kips`},
@@ -98,7 +98,7 @@ func TestQuantityMistakes(t *testing.T) {
 		{ParseDamping, "-1%", `damping: -0.01 is -1% of critical; it must be at least 0 and less than 1, written 5% or 0.05`},
 		{ParseDamping, "5 percent", `damping: unknown unit "percent" in "5 percent"; write a percentage such as 5% or a ratio such as 0.05`},
 		{ParseBandWidth, "100%", `band: 1 is out of range; the half-width is a ratio of the period below 1, written 10% or 0.1`},
-		{ParseLength, strings.Repeat("9", 41) + "m", `height: "` + strings.Repeat("9", 41) + `m" does not start with a number such as 1.6 (decimal point, no thousands separators)`},
+		{ParseLength, strings.Repeat("9", 41) + "m", `height: "` + strings.Repeat("9", 41) + `m" does not start with a number such as 1.35 (decimal point, no thousands separators)`},
 	}
 	for _, c := range cases {
 		_, err := c.parse(c.text)
@@ -140,9 +140,9 @@ func TestLists(t *testing.T) {
 	_, err = ParsePercentiles("16,101")
 	checkUsage(t, "percentile", err, "percentiles: 101 is outside 0 to 100")
 	_, err = ParsePercentiles("p16")
-	checkUsage(t, "percentile", err, `percentiles: "p16" does not start with a number such as 1.6 (decimal point, no thousands separators)`)
+	checkUsage(t, "percentile", err, `percentiles: "p16" does not start with a number such as 1.35 (decimal point, no thousands separators)`)
 	_, err = ParsePeriods("0.2,,1")
-	checkUsage(t, "period", err, `periods: "" does not start with a number such as 1.6 (decimal point, no thousands separators)`)
+	checkUsage(t, "period", err, `periods: "" does not start with a number such as 1.35 (decimal point, no thousands separators)`)
 }
 
 func TestBands(t *testing.T) {

@@ -132,7 +132,7 @@ func splitNumber(what, text string) (number *big.Rat, rest string, err error) {
 	trimmed := strings.TrimSpace(text)
 	n := numberLength(trimmed)
 	if n == 0 || n > maxNumberText {
-		return nil, "", usage(what, "%q does not start with a number such as 1.6 (decimal point, no thousands separators)", text)
+		return nil, "", usage(what, "%q does not start with a number such as 1.35 (decimal point, no thousands separators)", text)
 	}
 	// The range is checked first: an exact 1e999999999 would fill the memory.
 	x, err := strconv.ParseFloat(trimmed[:n], 64)

@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"fmt"
 	"slices"
 
 	"swaybook/db"
@@ -151,12 +152,21 @@ func (p *picker) finish() (*picked, error) {
 	}
 	p.report.Spectra, p.report.Events = len(p.motions), len(p.events)
 	if p.unknown > 0 && p.selection.Siting != "unknown" {
-		p.report.Notes = append(p.report.Notes, countOf(p.unknown, "record", "records")+" of unknown siting used")
+		p.report.Notes = append(p.report.Notes, countOf(p.unknown, "record", "records")+" of unknown siting among them")
 	}
 	if len(p.motions) == 0 {
-		return &p.picked, &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: p.report.LeftOut}
+		return &p.picked, &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: p.report.LeftOut, Hint: p.hint()}
 	}
 	return &p.picked, nil
+}
+
+// hint says what to ask where the expression asks a pair for the role of one
+// component, which it never has.
+func (p *picker) hint() string {
+	if p.selection.Component.IsPair() && p.condition.uses("component") {
+		return fmt.Sprintf("the expression sees the component %q: ask for h1, h2, v or each instead", p.selection.Component)
+	}
+	return ""
 }
 
 // attributes are those of the component, or of the pair.

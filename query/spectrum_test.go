@@ -124,14 +124,14 @@ func TestSelectionCounts(t *testing.T) {
 		leftOut                  []LeftOut
 		notes                    []string
 	}{
-		{Selection{}, 4, 4, 3, []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}, []string{"1 record of unknown siting used"}},
+		{Selection{}, 4, 4, 3, []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}, []string{"1 record of unknown siting among them"}},
 		{Selection{Where: "magnitude > 6"}, 2, 2, 1, []LeftOut{{"magnitude unknown", 1}}, nil},
-		{Selection{Where: "magnitude > 5"}, 3, 3, 2, []LeftOut{{"magnitude unknown", 1}, {"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}, []string{"1 record of unknown siting used"}},
+		{Selection{Where: "magnitude > 5"}, 3, 3, 2, []LeftOut{{"magnitude unknown", 1}, {"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}, []string{"1 record of unknown siting among them"}},
 		{Selection{Siting: "free-field"}, 2, 2, 2, []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting ground", 1}, {"siting structure", 1}, {"siting unknown", 1}}, nil},
 		{Selection{Siting: "unknown"}, 1, 1, 1, []LeftOut{{"siting borehole", 1}, {"siting free-field", 3}, {"siting ground", 1}, {"siting structure", 1}}, nil},
-		{Selection{Siting: "all"}, 5, 5, 3, []LeftOut{{"no horizontal component", 1}, {"one horizontal component only", 1}}, []string{"1 record of unknown siting used"}},
+		{Selection{Siting: "all"}, 5, 5, 3, []LeftOut{{"no horizontal component", 1}, {"one horizontal component only", 1}}, []string{"1 record of unknown siting among them"}},
 		{Selection{Siting: "structure,borehole", Component: ComponentEach}, 1, 2, 1, []LeftOut{{"no horizontal component", 1}, {"siting free-field", 3}, {"siting ground", 1}, {"siting unknown", 1}}, nil},
-		{Selection{Where: "azimuth_deg < 45", Component: ComponentEach}, 5, 5, 3, []LeftOut{{"siting borehole", 1}, {"siting structure", 1}}, []string{"1 record of unknown siting used"}},
+		{Selection{Where: "azimuth_deg < 45", Component: ComponentEach}, 5, 5, 3, []LeftOut{{"siting borehole", 1}, {"siting structure", 1}}, []string{"1 record of unknown siting among them"}},
 		{Selection{Where: "pga_g > 0.035 and pga_g < 0.05"}, 1, 1, 1, nil, nil},
 		{Selection{Where: "year == 2021"}, 1, 1, 1, nil, nil},
 		{Selection{Where: `component == "larger" and pga_g == 0.08`, Component: ComponentLarger}, 1, 1, 1, nil, nil},

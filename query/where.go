@@ -34,7 +34,8 @@ var whereFunctions = []string{
 type where struct {
 	program *vm.Program
 	machine vm.VM
-	used    []int // positions in numbers of those that the expression uses
+	used    []int           // positions in numbers of those that the expression uses
+	names   map[string]bool // all that it uses
 }
 
 // compileWhere checks the expression's names and types. The empty text gives
@@ -61,7 +62,7 @@ func compileWhere(text string) (*where, error) {
 	if err != nil {
 		return nil, whereError(err)
 	}
-	w := &where{program: program, machine: vm.VM{MemoryBudget: maxWhereElements}}
+	w := &where{program: program, machine: vm.VM{MemoryBudget: maxWhereElements}, names: inspector.used}
 	for i, n := range numbers {
 		if inspector.used[n.name] {
 			w.used = append(w.used, i)
@@ -111,6 +112,9 @@ func (w *where) unknown(a *attributes) string {
 	return ""
 }
 
+// uses reports whether the expression uses the attribute.
+func (w *where) uses(name string) bool { return w != nil && w.names[name] }
+
 // met reports whether the motion meets the expression.
 func (w *where) met(a *attributes) (bool, error) {
 	if w == nil {
@@ -148,5 +152,7 @@ func (v *inspector) Visit(node *ast.Node) {
 		v.refused = "a function over the elements of a list"
 	case *ast.MapNode:
 		v.refused = "a map"
+	case *ast.SequenceNode:
+		v.refused = "more than one expression"
 	}
 }

@@ -70,12 +70,12 @@ func newDemoOptions(c *cli.Context) (o demoOptions, err error) {
 // runDemo writes the files and does with them what a user would, printing each
 // command before its result.
 func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
-	p := &printer{w: w}
-	p.printf("An invented region: no place, event, station or structure here is real, and no motion was recorded.\n\n")
 	written, err := demo.Write(o.dir, o.region)
 	if err != nil {
 		return err
 	}
+	p := &printer{w: w}
+	p.printf("An invented region: no place, event, station or structure here is real, and no motion was recorded.\n\n")
 	p.printf("%s: %d earthquakes, %d stations, %d records in %d files (%.0f MB), %d of them damaged on purpose; %s\n",
 		o.dir, written.Events, written.Stations, written.Records, written.Files+written.Damaged, float64(written.Bytes)/1e6, written.Damaged, "see README.txt there")
 	if o.filesOnly || p.err != nil {

@@ -137,13 +137,13 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) error {
 	if err != nil && summary.Files == 0 {
 		return err
 	}
-	report := newIngestReport(o, summary)
+	report := newIngestReport(o, summary, err == nil)
 	if errPrint := report.print(w, o.json); errPrint != nil && err == nil {
 		err = errPrint
 	}
 	switch {
 	case err != nil && ctx.Err() != nil:
-		return fmt.Errorf("%w: %d files are done; run the same command again to finish the rest", err, summary.Files)
+		return fmt.Errorf("%w after %d files; run the same command again to finish the rest", errInterrupted, summary.Files)
 	case err != nil:
 		return err
 	case !summary.Complete():
@@ -159,7 +159,8 @@ type ingestReport struct {
 	SkippedFiles  []fileNote `json:"skipped_files"`
 	RejectedFiles []fileNote `json:"rejected_files"`
 	// Omitted counts the notes beyond the limit that the lists keep.
-	Omitted int `json:"omitted_notes"`
+	Omitted  int            `json:"omitted_notes"`
+	Warnings []warningCount `json:"warnings"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
 }
@@ -171,15 +172,18 @@ type fileNote struct {
 	Cause  string `json:"cause"`
 }
 
-func newIngestReport(o ingestOptions, summary pipeline.Summary) ingestReport {
+func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) ingestReport {
 	m := o.monitor
-	r := ingestReport{Store: o.store, Summary: summary, SkippedFiles: m.skipped, RejectedFiles: m.rejected, Omitted: m.omitted, Catalogue: []string{}}
+	r := ingestReport{Store: o.store, Summary: summary, SkippedFiles: m.skipped, RejectedFiles: m.rejected, Omitted: m.omitted, Warnings: m.warnings, Catalogue: []string{}}
 	if c := o.pipeline.Catalogue; c != nil {
 		for _, column := range c.UnknownColumns {
 			r.Catalogue = append(r.Catalogue, "unknown column "+column.String())
 		}
-		for _, line := range c.Unmatched() {
-			r.Catalogue = append(r.Catalogue, fmt.Sprintf("line %d matches no file", line))
+		// After a run that was stopped, rows of the files not reached are no news.
+		if complete {
+			for _, line := range c.Unmatched() {
+				r.Catalogue = append(r.Catalogue, fmt.Sprintf("line %d matches no file", line))
+			}
 		}
 	}
 	return r
@@ -193,13 +197,14 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 		return e.Encode(r)
 	}
 	p := &printer{w: w}
-	p.printf("%s: %d files seen in %.1f s\n", r.Store, r.Files, r.Seconds)
-	p.printf("  %7d components stored, from %d files, in %d new records\n", r.Stored, r.StoredFiles, r.Records)
-	p.printf("  %7d files already held\n", r.Held)
-	p.printf("  %7d files skipped: no ground acceleration\n", r.Skipped)
-	p.printf("  %7d files rejected\n", r.Rejected)
+	p.printf("%s, %.1f s\n", r.Store, r.Seconds)
+	p.printf("  files seen                              %7d\n", r.Files)
+	p.printf("  components stored                       %7d  from %d files, in %d new records\n", r.Stored, r.StoredFiles, r.Records)
+	p.printf("  files already held                      %7d\n", r.Held)
+	p.printf("  files skipped: no ground acceleration   %7d\n", r.Skipped)
+	p.printf("  files rejected                          %7d\n", r.Rejected)
 	if r.Channels > 0 {
-		p.printf("  %7d channels rejected from files that were stored\n", r.Channels)
+		p.printf("  channels rejected from files stored     %7d\n", r.Channels)
 	}
 	if r.Stored == 0 {
 		p.printf("Nothing new was stored.\n")
@@ -208,6 +213,12 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	p.notes("Rejected", r.RejectedFiles)
 	if r.Omitted > 0 {
 		p.printf("… and %d more; see: swaybook --store %s query records --rejected\n", r.Omitted, r.Store)
+	}
+	for i, w := range r.Warnings {
+		if i == 0 {
+			p.printf("Doubtful, and kept with the components:\n")
+		}
+		p.printf("  %s (%d times, first in %s)\n", w.Text, w.Count, w.First)
 	}
 	for _, note := range r.Catalogue {
 		p.printf("Catalogue: %s\n", note)

@@ -31,6 +31,9 @@ const (
 // What was rejected has been reported by then.
 var errRejected = errors.New("some files were rejected")
 
+// errInterrupted ends a command that somebody stopped.
+var errInterrupted = errors.New("interrupted")
+
 // usageError is a mistake in the command line.
 type usageError struct{ err error }
 
@@ -65,8 +68,12 @@ func exitCode(err error, stderr io.Writer) int {
 	if errors.Is(err, errRejected) {
 		return exitRejected
 	}
+	stopped := errors.Is(err, errInterrupted)
+	if !stopped && errors.Is(err, context.Canceled) {
+		err, stopped = errInterrupted, true
+	}
 	fmt.Fprintln(stderr, "swaybook: "+err.Error())
-	if errors.Is(err, context.Canceled) {
+	if stopped {
 		return exitInterrupted
 	}
 	if _, ok := errors.AsType[*usageError](err); ok {

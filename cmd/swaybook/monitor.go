@@ -33,13 +33,21 @@ type monitor struct {
 
 	skipped, rejected []fileNote
 	omitted           int
+	warnings          []warningCount
+}
+
+// warningCount is one warning with how often it was given and where first.
+type warningCount struct {
+	Text  string `json:"warning"`
+	Count int    `json:"count"`
+	First string `json:"first"`
 }
 
 func newMonitor(logger *slog.Logger, stderr io.Writer, quiet bool) *monitor {
 	now := time.Now()
 	return &monitor{
 		logger: logger, stderr: stderr, terminal: isTerminal(stderr), quiet: quiet, started: now, logged: now,
-		skipped: []fileNote{}, rejected: []fileNote{},
+		skipped: []fileNote{}, rejected: []fileNote{}, warnings: []warningCount{},
 	}
 }
 
@@ -70,16 +78,31 @@ func (m *monitor) note(f pipeline.FileReport) {
 	for _, c := range f.Causes {
 		m.keep(&m.rejected, fileNote{Source: f.Path, Line: c.Line, Cause: c.Text})
 	}
-	// A line in the middle of the bar would tear it; the report repeats both.
+	for _, text := range f.Warnings {
+		m.count(text, f.Path)
+	}
+	// A line in the middle of the bar would tear it; the report repeats them.
 	if m.terminal {
 		return
 	}
 	for _, c := range f.Causes {
 		m.logger.Warn("rejected", "file", f.Path, "line", c.Line, "cause", c.Text)
 	}
-	for _, text := range f.Warnings {
-		m.logger.Warn("doubtful", "file", f.Path, "warning", text)
+}
+
+// count adds up equal warnings, which come once a file of a kind.
+func (m *monitor) count(text, path string) {
+	for i := range m.warnings {
+		if m.warnings[i].Text == text {
+			m.warnings[i].Count++
+			return
+		}
 	}
+	if len(m.warnings) >= maxNotes {
+		m.omitted++
+		return
+	}
+	m.warnings = append(m.warnings, warningCount{Text: text, Count: 1, First: path})
 }
 
 func (m *monitor) keep(list *[]fileNote, n fileNote) {

@@ -2,6 +2,14 @@ package demo
 
 import "fmt"
 
+// readmeName is the file by which a folder is known again.
+const readmeName = "README.txt"
+
+// signature tells the files of one set of options from those of another.
+func signature(o Options) string {
+	return fmt.Sprintf("Seed %d, %d earthquakes, %d stations", o.Seed, o.Events, o.Stations)
+}
+
 // readme returns the text that goes with the files.
 func readme(seed int64, sum *Summary) []byte {
 	b := fmt.Appendf(nil, `Records of an invented region
@@ -13,9 +21,9 @@ these motions: they are simulated by the stochastic method (D. M. Boore, 2003,
 Pure and Applied Geophysics 160:635-676). They show what record files look like
 and are of no use for the design or assessment of anything.
 
-Seed %d, %d earthquakes, %d stations, %d records of three components.
+%s, %d records of three components.
 
-`, regionName, seed, sum.Events, sum.Stations, sum.Records)
+`, regionName, signature(Options{Seed: int(seed), Events: sum.Events, Stations: sum.Stations}), sum.Records)
 	for _, n := range networks[:min(len(networks), sum.Stations)] {
 		b = fmt.Appendf(b, "%-18s %s, %s\n", n.folder, n.name, n.format)
 	}

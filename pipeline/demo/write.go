@@ -41,8 +41,8 @@ type Summary struct {
 	Catalogue        string
 }
 
-// ErrNotEmpty says that the folder to write to holds something already.
-var ErrNotEmpty = errors.New("folder is not empty")
+// ErrNotEmpty says that the folder to write to holds something else already.
+var ErrNotEmpty = errors.New("the folder holds something else; choose another or empty it")
 
 // Write makes the invented region's records in the folder dir, which is created
 // if need be and must be empty: a folder for each network, catalogue.csv,
@@ -56,7 +56,7 @@ func Write(dir string, opts Options) (Summary, error) {
 	if err != nil {
 		return Summary{}, err
 	}
-	if err := prepare(dir); err != nil {
+	if err := prepare(dir, opts); err != nil {
 		return Summary{}, err
 	}
 	w := writer{dir: dir, seed: int64(opts.Seed), events: events(opts.Events, int64(opts.Seed)), stations: stations(opts.Stations, int64(opts.Seed))}
@@ -91,14 +91,19 @@ func (o Options) complete() (Options, error) {
 	return o, nil
 }
 
-// prepare makes sure that dir exists and is empty.
-func prepare(dir string) error {
+// prepare makes sure that dir exists and is empty, or holds the files of the
+// same options, which are then written again.
+func prepare(dir string, opts Options) error {
 	if err := os.MkdirAll(dir, 0o777); err != nil {
 		return fmt.Errorf("create demo folder: %w", err)
 	}
 	entries, err := os.ReadDir(dir)
 	if err != nil {
 		return fmt.Errorf("read demo folder: %w", err)
+	}
+	earlier, err := os.ReadFile(filepath.Join(dir, readmeName))
+	if err == nil && bytes.Contains(earlier, []byte(signature(opts))) {
+		return nil
 	}
 	if len(entries) > 0 {
 		return fmt.Errorf("write demo to %s: %w", dir, ErrNotEmpty)
@@ -119,7 +124,7 @@ type writer struct {
 // the work does not show.
 func (w *writer) records() (Summary, error) {
 	for i := range min(len(networks), len(w.stations)) {
-		if err := os.Mkdir(filepath.Join(w.dir, w.stations[i].network.folder), 0o777); err != nil {
+		if err := os.MkdirAll(filepath.Join(w.dir, w.stations[i].network.folder), 0o777); err != nil {
 			return Summary{}, fmt.Errorf("create network folder: %w", err)
 		}
 	}
@@ -182,7 +187,7 @@ func (w *writer) file(name string, data []byte, sum *Summary) error {
 // damaged writes two files that no reader may accept: one cut off in its
 // samples, one of which the unit is no acceleration.
 func (w *writer) damaged(sum *Summary) error {
-	if err := os.Mkdir(filepath.Join(w.dir, "damaged"), 0o777); err != nil {
+	if err := os.MkdirAll(filepath.Join(w.dir, "damaged"), 0o777); err != nil {
 		return fmt.Errorf("create folder: %w", err)
 	}
 	// The last station built in is there whatever the number of stations.
@@ -213,5 +218,5 @@ func (w *writer) texts(sum *Summary) error {
 	if err := w.file("catalogue.csv", table, sum); err != nil {
 		return err
 	}
-	return w.file("README.txt", readme(w.seed, sum), sum)
+	return w.file(readmeName, readme(w.seed, sum), sum)
 }
