@@ -76,7 +76,8 @@ func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, genera
 // StoredRecord is a record's identity in the store with its components in the
 // order in which they were stored.
 type StoredRecord struct {
-	ID         int64
+	ID         int64 // 0 where there is none
+	Code       string
 	Start      time.Time
 	Components []Component
 }
@@ -96,12 +97,42 @@ func (t *Tx) FindRecord(ctx context.Context, code string) (r StoredRecord, ok bo
 	if err != nil || len(found) == 0 {
 		return r, false, err
 	}
-	r.ID = found[0].id
+	r.ID, r.Code = found[0].id, code
 	if r.Start, err = parseTime(found[0].start); err != nil {
 		return r, false, err
 	}
 	r.Components, err = t.components(ctx, r.ID)
 	return r, true, err
+}
+
+// FindTrigger returns the record of a later trigger under the base code, as
+// base_Thhmmss, that starts nearest to at and no further away than tolerance; ok
+// is false where there is none.
+func (t *Tx) FindTrigger(ctx context.Context, base string, at time.Time, tolerance time.Duration) (r StoredRecord, ok bool, err error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT code, coalesce(start_at, '') FROM record
+		WHERE code GLOB ? || '_T[0-9][0-9][0-9][0-9][0-9][0-9]' ORDER BY code`, base)
+	if err != nil {
+		return r, false, fmt.Errorf("find trigger: %w", err)
+	}
+	type row struct{ code, start string }
+	found, err := collect(rows, func(v *row) []any { return []any{&v.code, &v.start} })
+	if err != nil {
+		return r, false, err
+	}
+	code, nearest := "", tolerance+1
+	for _, v := range found {
+		start, err := parseTime(v.start)
+		if err != nil {
+			return r, false, err
+		}
+		if d := start.Sub(at).Abs(); d < nearest {
+			code, nearest = v.code, d
+		}
+	}
+	if code == "" {
+		return r, false, nil
+	}
+	return t.FindRecord(ctx, code)
 }
 
 func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error) {
@@ -115,12 +146,14 @@ func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error
 	})
 }
 
-// SetOrientation replaces a component's axis, label, rank and azimuth by those
-// of c.
-func (t *Tx) SetOrientation(ctx context.Context, componentID int64, c Component) error {
-	err := t.exec(ctx, `UPDATE component SET axis = ?, label = ?, rank = ?, azimuth_deg = ? WHERE id = ?`, c.Axis, c.Label, c.Rank, c.AzimuthDeg, componentID)
+// DescribeComponent replaces a component's axis, label, rank and azimuth by
+// those of c, and its corner frequencies where c states them.
+func (t *Tx) DescribeComponent(ctx context.Context, componentID int64, c Component) error {
+	err := t.exec(ctx, `UPDATE component SET axis = ?, label = ?, rank = ?, azimuth_deg = ?,
+		low_cut_hz = coalesce(?, low_cut_hz), high_cut_hz = coalesce(?, high_cut_hz) WHERE id = ?`,
+		c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.LowCutHz, c.HighCutHz, componentID)
 	if err != nil {
-		return fmt.Errorf("store orientation: %w", err)
+		return fmt.Errorf("describe component: %w", err)
 	}
 	return nil
 }

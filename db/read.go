@@ -6,6 +6,7 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"strings"
 	"time"
 )
 
@@ -52,17 +53,25 @@ func (s *Snapshot) Components(ctx context.Context) ([]HeldComponent, error) {
 	return s.selectComponents(ctx, "", s.Generation.ID)
 }
 
-// ComponentsOf returns the components that the file with this digest gave.
-func (s *Snapshot) ComponentsOf(ctx context.Context, sha256 string) ([]HeldComponent, error) {
-	return s.selectComponents(ctx, "WHERE f.sha256 = ?2", s.Generation.ID, sha256)
+// ComponentsOf returns the components that the file with this digest gave, as
+// the transaction sees them.
+func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
+	s := Snapshot{tx: t.tx, Generation: g}
+	return s.selectComponents(ctx, "WHERE f.sha256 = ?2", g.ID, sha256)
 }
 
+// selectComponents reads the components that the condition picks. Events and
+// stations are shared by many components and read once.
 func (s *Snapshot) selectComponents(ctx context.Context, where string, args ...any) ([]HeldComponent, error) {
-	events, err := s.events(ctx)
+	parents := ""
+	if where != "" {
+		parents = " WHERE ?1 IS NOT NULL AND id IN (SELECT r.%s_id FROM record r JOIN component c ON c.record_id = r.id JOIN source_file f ON f.id = c.source_id " + where + ")"
+	}
+	events, err := s.events(ctx, strings.ReplaceAll(parents, "%s", "event"), args)
 	if err != nil {
 		return nil, err
 	}
-	stations, err := s.stations(ctx)
+	stations, err := s.stations(ctx, strings.ReplaceAll(parents, "%s", "station"), args)
 	if err != nil {
 		return nil, err
 	}
@@ -73,9 +82,9 @@ func (s *Snapshot) selectComponents(ctx context.Context, where string, args ...a
 		FROM component c
 		JOIN record r ON r.id = c.record_id
 		JOIN source_file f ON f.id = c.source_id
-		JOIN measure pga ON pga.record_id = r.id AND pga.role = c.role AND pga.generation_id = ?1 AND pga.name = '`+MeasurePGA+`'
-		JOIN measure pgv ON pgv.record_id = r.id AND pgv.role = c.role AND pgv.generation_id = ?1 AND pgv.name = '`+MeasurePGV+`'
-		JOIN measure pgd ON pgd.record_id = r.id AND pgd.role = c.role AND pgd.generation_id = ?1 AND pgd.name = '`+MeasurePGD+`'
+		LEFT JOIN measure pga ON pga.record_id = r.id AND pga.role = c.role AND pga.generation_id = ?1 AND pga.name = '`+MeasurePGA+`'
+		LEFT JOIN measure pgv ON pgv.record_id = r.id AND pgv.role = c.role AND pgv.generation_id = ?1 AND pgv.name = '`+MeasurePGV+`'
+		LEFT JOIN measure pgd ON pgd.record_id = r.id AND pgd.role = c.role AND pgd.generation_id = ?1 AND pgd.name = '`+MeasurePGD+`'
 		`+where+` ORDER BY r.code, c.role, c.id`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
@@ -111,8 +120,8 @@ func scanComponent(rows *sql.Rows, events map[int64]*Event, stations map[int64]*
 	return c, json.Unmarshal([]byte(warnings), &c.Warnings)
 }
 
-func (s *Snapshot) events(ctx context.Context) (map[int64]*Event, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce(name, ''), coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`)
+func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce(name, ''), coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`+where, numbered(where, args)...)
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
 	}
@@ -137,8 +146,8 @@ func (s *Snapshot) events(ctx context.Context) (map[int64]*Event, error) {
 	return out, nil
 }
 
-func (s *Snapshot) stations(ctx context.Context) (map[int64]*Station, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s FROM station`)
+func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s FROM station`+where, numbered(where, args)...)
 	if err != nil {
 		return nil, fmt.Errorf("read stations: %w", err)
 	}
@@ -157,6 +166,14 @@ func (s *Snapshot) stations(ctx context.Context) (map[int64]*Station, error) {
 		out[v.id] = &v.Station
 	}
 	return out, nil
+}
+
+// numbered returns the arguments for a condition, none where there is none.
+func numbered(where string, args []any) []any {
+	if where == "" {
+		return nil
+	}
+	return args
 }
 
 // SpectrumKey names one stored spectrum of a damping.
@@ -215,7 +232,11 @@ func (s *Snapshot) Samples(ctx context.Context, componentID int64) ([]float64, e
 
 // Rejections returns what could not be stored, ordered by path and line.
 func (s *Store) Rejections(ctx context.Context) ([]Rejection, error) {
-	rows, err := s.read.QueryContext(ctx, `SELECT path, line, cause, coalesce(sha256, '') FROM rejection ORDER BY path, line, cause`)
+	return rejections(ctx, s.read, "")
+}
+
+func rejections(ctx context.Context, q queryer, where string, args ...any) ([]Rejection, error) {
+	rows, err := q.QueryContext(ctx, `SELECT path, line, cause, coalesce(sha256, '') FROM rejection `+where+` ORDER BY path, line, cause`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read rejections: %w", explain(err))
 	}

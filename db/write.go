@@ -6,6 +6,7 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"strings"
 	"time"
 )
 
@@ -47,12 +48,8 @@ func (t *Tx) insert(ctx context.Context, query string, args ...any) (int64, erro
 	return r.LastInsertId()
 }
 
-// StartRun notes that a run began, and closes the notes of runs that a crash
-// left open.
+// StartRun notes that a run began.
 func (t *Tx) StartRun(ctx context.Context, kind, program string, at time.Time) (int64, error) {
-	if err := t.exec(ctx, `UPDATE run SET outcome = 'interrupted' WHERE outcome = 'running'`); err != nil {
-		return 0, fmt.Errorf("close earlier runs: %w", err)
-	}
 	id, err := t.insert(ctx, `INSERT INTO run (kind, program, started_at, outcome) VALUES (?, ?, ?, 'running')`, kind, program, timeText(at))
 	if err != nil {
 		return 0, fmt.Errorf("start run: %w", err)
@@ -104,11 +101,22 @@ func (t *Tx) ForgetRejections(ctx context.Context, path, keep string) error {
 	return nil
 }
 
+// RejectionsOf returns what stands against content with this digest: channels
+// of a held file that found no place.
+func (t *Tx) RejectionsOf(ctx context.Context, path, sha256 string) ([]Rejection, error) {
+	return rejections(ctx, t.tx, `WHERE path = ? AND sha256 = ?`, path, sha256)
+}
+
 // PutEvent stores the event under its code. Where it is known already, what
 // the store lacks is filled in; with override, what e states replaces what is
 // stored.
 func (t *Tx) PutEvent(ctx context.Context, e Event, override bool) (int64, error) {
 	query := upsert("event", []string{"code"}, []string{"name", "origin_time", "latitude_deg", "longitude_deg", "depth_km", "magnitude", "magnitude_type"}, override)
+	if override {
+		// A magnitude brings its type; without one it is of unknown type.
+		query = strings.Replace(query, "coalesce(excluded.magnitude_type, event.magnitude_type)",
+			"CASE WHEN excluded.magnitude IS NULL THEN coalesce(excluded.magnitude_type, event.magnitude_type) ELSE excluded.magnitude_type END", 1)
+	}
 	var id int64
 	err := t.tx.QueryRowContext(ctx, query, e.Code, textOrNull(e.Name), timeText(e.Origin), e.LatitudeDeg, e.LongitudeDeg,
 		e.DepthKM, e.Magnitude, textOrNull(e.MagnitudeType)).Scan(&id)
@@ -130,24 +138,27 @@ func (t *Tx) PutStation(ctx context.Context, s Station, override bool) (int64, e
 }
 
 // PutRecord stores the record under its code, with its event and station, by
-// the same rule as PutEvent. An empty instrument stays as it is.
+// the same rule as PutEvent. Only override changes the instrument.
 func (t *Tx) PutRecord(ctx context.Context, r Record, override bool) (int64, error) {
 	eventID, stationID, err := t.putParents(ctx, r, override)
 	if err != nil {
 		return 0, err
 	}
 	first, second := "record", "excluded"
+	instrument := "record.instrument"
 	if override {
 		first, second = second, first
+		instrument = "CASE WHEN excluded.instrument <> '' THEN excluded.instrument ELSE record.instrument END"
 	}
 	query := fmt.Sprintf(`INSERT INTO record (code, event_id, station_id, instrument, siting, start_at, distance_km) VALUES (?, ?, ?, ?, ?, ?, ?)
 		ON CONFLICT (code) DO UPDATE SET
 			event_id = coalesce(%[1]s.event_id, %[2]s.event_id),
 			station_id = coalesce(%[1]s.station_id, %[2]s.station_id),
+			instrument = %[3]s,
 			siting = CASE WHEN %[1]s.siting = 'unknown' THEN %[2]s.siting ELSE %[1]s.siting END,
 			start_at = coalesce(record.start_at, excluded.start_at),
 			distance_km = coalesce(%[1]s.distance_km, %[2]s.distance_km)
-		RETURNING id`, first, second)
+		RETURNING id`, first, second, instrument)
 	var id int64
 	err = t.tx.QueryRowContext(ctx, query, r.Code, eventID, stationID, r.Instrument, r.Siting, timeText(r.Start), r.DistanceKM).Scan(&id)
 	if err != nil {

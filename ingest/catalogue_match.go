@@ -121,20 +121,27 @@ func rowName(row *catalogueRow) string { return fmt.Sprintf("catalogue line %d",
 // Rows without file join by codes and never change them; but where the header
 // gives the event no ID, the event of a row that joins becomes it. So whatever
 // else the row changes, the event keeps its code and joins again.
-func (c *Catalogue) Apply(rel string, ch *Channel) (matched bool) {
+//
+// stated holds nothing but what the rows say, under the codes of the channel,
+// so that it can replace what another file's header said of the same event or
+// station.
+func (c *Catalogue) Apply(rel string, ch *Channel) (stated Channel, matched bool) {
 	files := c.fileRows(rel)
 	giveDirection(files, ch)
 	files = slices.DeleteFunc(files, func(row *catalogueRow) bool { return !row.fits(ch.Orientation) })
 	for _, row := range files {
 		row.setCodes(ch)
 	}
-	joins := c.joinRows(ch)
-	for _, row := range append(joins, files...) {
+	stated.Orientation = ch.Orientation
+	rows := append(c.joinRows(ch), files...)
+	for _, row := range rows {
 		row.used.Store(true)
 		row.apply(ch)
-		matched = true
+		row.apply(&stated)
 	}
-	return matched
+	stated.Event.ID = EventCode(ch)
+	stated.Station.Network, stated.Station.Code = ch.Station.Network, StationCode(ch)
+	return stated, len(rows) > 0
 }
 
 // giveDirection gives a channel without direction that of the only row with

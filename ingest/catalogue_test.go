@@ -44,7 +44,7 @@ func TestCatalogueFixture(t *testing.T) {
 		t.Errorf("Hints = %+v, want %+v", hints, want)
 	}
 	ch := readFixture(t, "plain", "silent.txt", hints)
-	if !c.Apply(rel, &ch) {
+	if _, ok := c.Apply(rel, &ch); !ok {
 		t.Error("Apply fitted no row")
 	}
 	event := Event{ID: "nwt2041", Name: "Northwater", Origin: time.Date(2041, 3, 3, 23, 12, 0, 0, time.UTC), Latitude: Known(30.125), Longitude: Known(150.25),
@@ -182,7 +182,7 @@ func TestCataloguePrecedence(t *testing.T) {
 		ordered := slices.Clone(rows[from:])
 		slices.Reverse(ordered)
 		ch := Channel{Event: Event{ID: "e1", Magnitude: Known(0), MagnitudeType: "ML"}, Station: Station{Code: "s1"}, Orientation: Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(0), Label: "N-S"}}
-		if !catalogueOf(t, append([]string{header}, ordered...)...).Apply("sub/a.txt", &ch) {
+		if _, ok := catalogueOf(t, append([]string{header}, ordered...)...).Apply("sub/a.txt", &ch); !ok {
 			t.Fatal("no row fits")
 		}
 		if ch.Event.Magnitude != Known(float64(from+1)) || ch.Event.MagnitudeType != "" {
@@ -196,7 +196,7 @@ func TestCataloguePrecedence(t *testing.T) {
 	}
 	c := catalogueOf(t, header, "b.txt,,,,1,", "sub2/a.txt,,,,1,", "a.txt,,,EW,1,", ",e2,,,1,", ",e1,s2,,1,", ",,,,,")
 	ch := Channel{Event: Event{ID: "e1"}, Station: Station{Code: "s1"}, Orientation: vertical}
-	if c.Apply("sub/a.txt", &ch) || !slices.Equal(c.Unmatched(), []int{2, 3, 4, 5, 6}) {
+	if _, ok := c.Apply("sub/a.txt", &ch); ok || !slices.Equal(c.Unmatched(), []int{2, 3, 4, 5, 6}) {
 		t.Errorf("rows of others fit: %+v, unmatched %v", ch, c.Unmatched())
 	}
 }
@@ -232,7 +232,7 @@ func TestCatalogueMatching(t *testing.T) {
 	for row, want := range cases {
 		got := ch
 		c := catalogueOf(t, header, row)
-		if matched := c.Apply("sub/a.txt", &got); matched != want || (got.Instrument == "x") != want || (len(c.Unmatched()) == 0) != want {
+		if _, matched := c.Apply("sub/a.txt", &got); matched != want || (got.Instrument == "x") != want || (len(c.Unmatched()) == 0) != want {
 			t.Errorf("row %q: matched %v, instrument %q, unmatched %v, want %v", row, matched, got.Instrument, c.Unmatched(), want)
 		}
 	}
@@ -244,7 +244,7 @@ func TestCatalogueKeepsEventCode(t *testing.T) {
 	c := catalogueOf(t, "event,event_name,origin_time", "20410303T231200,Northwater,2041-03-03T23:12:07Z")
 	ch := Channel{Event: Event{Origin: time.Date(2041, 3, 3, 23, 12, 0, 0, time.UTC)}, Station: Station{Code: "SWB001"}}
 	for range 2 {
-		if !c.Apply("x", &ch) || EventCode(&ch) != "20410303T231200" || ch.Event.Origin.Second() != 7 {
+		if _, ok := c.Apply("x", &ch); !ok || EventCode(&ch) != "20410303T231200" || ch.Event.Origin.Second() != 7 {
 			t.Errorf("event %+v has the code %s", ch.Event, EventCode(&ch))
 		}
 	}
@@ -329,7 +329,7 @@ func BenchmarkCatalogue(b *testing.B) {
 	for b.Loop() {
 		ch := Channel{}
 		c.Hints("x/777.txt", Hints{})
-		if !c.Apply("x/777.txt", &ch) || ch.Event.ID != "e77" {
+		if _, ok := c.Apply("x/777.txt", &ch); !ok || ch.Event.ID != "e77" {
 			b.Fatal("not joined")
 		}
 	}

@@ -2,71 +2,86 @@ package pipeline
 
 import (
 	"context"
-	"errors"
 	"fmt"
 	"math"
-	"reflect"
 
 	"swaybook/db"
 	"swaybook/ingest"
 )
 
-// update is what the catalogue changes of one held component.
-type update struct {
-	componentID int64
-	recordID    int64
-	record      db.Record
-	orientation ingest.Orientation
-	turned      bool // the orientation changed
+// describeHeld applies the catalogue to what the store holds of a file's
+// content: nothing is read again, but what the catalogue says of it counts. It
+// returns what can no longer be changed.
+func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result) (warnings []string, err error) {
+	if w.opts.Catalogue == nil {
+		return nil, nil
+	}
+	components, err := tx.ComponentsOf(ctx, w.run.generation, res.source.SHA256)
+	if err != nil {
+		return nil, err
+	}
+	hints := w.opts.Catalogue.Hints(res.rel, ingest.Hints{})
+	for _, held := range components {
+		c := channelOf(held)
+		stated, matched := w.opts.Catalogue.Apply(res.rel, &c)
+		if matched {
+			if err := redescribe(ctx, tx, held, c.Orientation, stated); err != nil {
+				return nil, err
+			}
+		}
+		warnings = append(warnings, tooLate(hints, held)...)
+	}
+	return warnings, nil
 }
 
-// held answers for a file whose content is in the store: nothing is read
-// again, but what the catalogue says of it counts.
-func (r *reader) held(ctx context.Context, file ingest.Found, res result, first string) (result, error) {
-	res.outcome, res.reason = Held, "same content as "+first
-	if r.catalogue == nil {
-		return res, ctx.Err()
+// redescribe stores what the catalogue states of a held component.
+func redescribe(ctx context.Context, tx *db.Tx, held db.HeldComponent, o ingest.Orientation, stated ingest.Channel) error {
+	if _, err := tx.PutRecord(ctx, recordOf(stated, held.Record.Code), true); err != nil {
+		return err
 	}
-	err := r.store.View(ctx, func(s *db.Snapshot) error {
-		components, err := s.ComponentsOf(ctx, res.source.SHA256)
-		if err != nil {
-			return err
-		}
-		hints := r.catalogue.Hints(file.Rel, ingest.Hints{})
-		for _, c := range components {
-			if u, changed := r.compare(file, c); changed {
-				res.updates = append(res.updates, u)
-			}
-			res.warnings = append(res.warnings, tooLate(hints, c)...)
-		}
+	stated.Orientation = o
+	if err := tx.DescribeComponent(ctx, held.ID, componentOf(solved{channel: stated}, held.Role)); err != nil {
+		return err
+	}
+	if o == orientationOf(held.Component) {
 		return nil
-	})
-	if errors.Is(err, db.ErrEmpty) {
-		err = nil
 	}
-	return res, err
+	return renewRoles(ctx, tx, held.Record.Code)
+}
+
+// renewRoles gives the components of a record the roles of their directions.
+func renewRoles(ctx context.Context, tx *db.Tx, code string) error {
+	r, _, err := tx.FindRecord(ctx, code)
+	if err != nil {
+		return err
+	}
+	orientations := make([]ingest.Orientation, len(r.Components))
+	for i, held := range r.Components {
+		orientations[i] = orientationOf(held)
+	}
+	renamed := map[string]string{}
+	for i, role := range ingest.AssignRoles(orientations) {
+		// A direction given twice keeps the roles as they are.
+		if role == "" {
+			return nil
+		}
+		if held := r.Components[i].Role; held != role {
+			renamed[held] = role
+		}
+	}
+	return tx.SetRoles(ctx, r.ID, renamed)
 }
 
 // tooLate says where the catalogue gives a held file another unit or time step
 // than the one with which it was read: its samples are not read again.
 func tooLate(hints ingest.Hints, c db.HeldComponent) []string {
+	const way = "ingest it into a new store (--store) to change that"
 	var out []string
 	if unit, err := ingest.ParseUnit(hints.Unit); err == nil && unit.Name != c.Unit {
-		out = append(out, fmt.Sprintf("%s says unit %s, but the file is held as %s: ingest it into a new store (--store) to change that", hints.UnitFrom, unit.Name, c.Unit))
+		out = append(out, fmt.Sprintf("%s says unit %s, but the file is held as %s: %s", hints.UnitFrom, unit.Name, c.Unit, way))
 	}
 	if hints.StepS != 0 && math.Abs(hints.StepS-c.StepS) > 1e-3*c.StepS {
-		out = append(out, fmt.Sprintf("%s says a time step of %g s, but the file is held with %g s: ingest it into a new store (--store) to change that", hints.StepFrom, hints.StepS, c.StepS))
+		out = append(out, fmt.Sprintf("%s says a time step of %g s, but the file is held with %g s: %s", hints.StepFrom, hints.StepS, c.StepS, way))
 	}
 	return out
-}
-
-// compare applies the catalogue to a held component's description.
-func (r *reader) compare(file ingest.Found, held db.HeldComponent) (update, bool) {
-	c := channelOf(held)
-	before := recordOf(c, held.Record.Code)
-	turned := c.Orientation
-	r.catalogue.Apply(file.Rel, &c)
-	u := update{componentID: held.ID, recordID: held.RecordID, record: recordOf(c, held.Record.Code), orientation: c.Orientation}
-	u.turned = c.Orientation != turned
-	return u, u.turned || !reflect.DeepEqual(before, u.record)
 }

@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"path"
 	"path/filepath"
-	"strings"
 	"time"
 
 	"swaybook/db"
@@ -27,37 +26,63 @@ type placement struct {
 
 // place finds the record for a channel of the file. Same event, station and
 // instrument make one record, unless the channel starts at another time (a
-// second trigger) or its direction is taken by another sensor of the same
-// file family; such a channel gets a record of its own, whose code says why. A
-// channel that another version of itself has taken the place of is an error.
-func place(ctx context.Context, tx *db.Tx, src db.Source, stem string, c *ingest.Channel) (placement, error) {
-	code, _ := ingest.RecordID(c, stem)
-	r, _, err := tx.FindRecord(ctx, code)
+// second trigger), or its direction is taken by another sensor of the same file
+// family; files without identity make one record only within a folder. What
+// does not belong gets a record of its own, whose code says why. A channel that
+// another version of itself has taken the place of is an error.
+func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (placement, error) {
+	code, r, err := findRecord(ctx, tx, res, c)
 	if err != nil {
 		return placement{}, err
-	}
-	if startsApart(r.Start, c.Start) {
-		code += c.Start.UTC().Format("_T150405")
-		if r, _, err = tx.FindRecord(ctx, code); err != nil {
-			return placement{}, err
-		}
 	}
 	p, rival := join(code, r, c)
 	if rival == nil {
 		return p, nil
 	}
-	suffix := apartFrom(*rival, src, c)
-	if suffix == "" {
-		return placement{}, takenError(code, *rival, src, c)
+	if c.ChannelCode == "" || rival.SourceFormat != res.source.Format || rival.Channel == c.ChannelCode {
+		return placement{}, takenError(code, *rival, res.source, c)
 	}
-	code += suffix
+	code += "_ch" + ingest.Slug(c.ChannelCode)
 	if r, _, err = tx.FindRecord(ctx, code); err != nil {
 		return placement{}, err
 	}
 	if p, rival = join(code, r, c); rival != nil {
-		return placement{}, takenError(code, *rival, src, c)
+		return placement{}, takenError(code, *rival, res.source, c)
 	}
 	return p, nil
+}
+
+// findRecord returns the record to which the channel belongs by what it states,
+// or the code of a new one.
+func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (code string, r db.StoredRecord, err error) {
+	code, stated := ingest.RecordID(c, res.stem)
+	if r, _, err = tx.FindRecord(ctx, code); err != nil {
+		return code, r, err
+	}
+	if !stated && len(r.Components) > 0 && folderOf(r.Components[0].SourcePath) != folderOf(res.source.Path) {
+		code += "_" + folderSlug(res)
+		r, _, err = tx.FindRecord(ctx, code)
+		return code, r, err
+	}
+	if !startsApart(r.Start, c.Start) {
+		return code, r, nil
+	}
+	later, ok, err := tx.FindTrigger(ctx, code, c.Start, startTolerance)
+	if ok || err != nil {
+		return later.Code, later, err
+	}
+	return code + c.Start.UTC().Format("_T150405"), db.StoredRecord{}, nil
+}
+
+func folderOf(file string) string { return path.Dir(filepath.ToSlash(file)) }
+
+// folderSlug names the folder of a file below the one that was named, or that
+// one itself.
+func folderSlug(res result) string {
+	if below := folderOf(res.rel); below != "." {
+		return ingest.Slug(below)
+	}
+	return ingest.Slug(path.Base(folderOf(res.source.Path)))
 }
 
 // takenError says what the channel stands in the way of, and what to do.
@@ -119,20 +144,4 @@ func sameDirection(components []db.Component, o ingest.Orientation) *db.Componen
 		}
 	}
 	return nil
-}
-
-// apartFrom returns the suffix that tells a channel from its rival where they
-// are different sensors: another channel number in the same format, or, for
-// files without identity, another folder. It is empty where they are versions
-// of one channel.
-func apartFrom(rival db.Component, src db.Source, c *ingest.Channel) string {
-	if c.ChannelCode != "" && rival.SourceFormat == src.Format && rival.Channel != c.ChannelCode {
-		return "_ch" + ingest.Slug(c.ChannelCode)
-	}
-	folder, other := path.Dir(filepath.ToSlash(src.Path)), path.Dir(filepath.ToSlash(rival.SourcePath))
-	anonymous := ingest.EventCode(c) == "" || ingest.StationCode(c) == ""
-	if anonymous && folder != other {
-		return "_" + strings.Trim(ingest.Slug(path.Base(folder)), "-")
-	}
-	return ""
 }

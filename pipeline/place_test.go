@@ -31,6 +31,11 @@ func at(o ingest.Orientation, code string, start time.Time) ingest.Channel {
 	}
 }
 
+func towards(c ingest.Channel, azimuth float64) ingest.Channel {
+	c.Orientation = horizontal(azimuth)
+	return c
+}
+
 func TestPlace(t *testing.T) {
 	noon := time.Date(2026, 3, 12, 12, 0, 0, 0, time.UTC)
 	var none time.Time
@@ -64,8 +69,19 @@ func TestPlace(t *testing.T) {
 		{"roles that collide follow the azimuths, in the other order", []seat{
 			{at(horizontal(320), "", noon), "a", "E_S h2"}, {at(horizontal(40), "", noon), "b", "E_S h1"},
 		}},
-		{"equal stems in two folders", []seat{
-			{anonymous, "north/run1.csv", "run1 h1"}, {anonymous, "south/run1.csv", "run1_south h1"}, {anonymous, "south/run1.txt", "holds this direction"},
+		{"components of a later trigger may straddle a second", []seat{
+			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon.Add(40 * time.Second)), "b", "E_S_T120040 h1"},
+			{at(horizontal(90), "", noon.Add(41 * time.Second)), "c", "E_S_T120040 h2"}, {at(vertical, "", noon.Add(39 * time.Second)), "d", "E_S_T120040 v"},
+		}},
+		{"equal stems in folders of one name", []seat{
+			{anonymous, "EV1/records/run1.csv", "run1 h1"}, {anonymous, "EV2/records/run1.csv", "run1_ev2-records h1"},
+			{anonymous, "EV3/records/run1.csv", "run1_ev3-records h1"}, {anonymous, "EV3/records/run1.txt", "states no direction"},
+		}},
+		{"components without identity join within a folder only", []seat{
+			{towards(anonymous, 0), "EV1/ST07_N.csv", "ST07 h1"}, {towards(anonymous, 90), "EV2/ST07_E.csv", "ST07_ev2 h2"}, {towards(anonymous, 90), "EV1/ST07_E.csv", "ST07 h2"},
+		}},
+		{"another content of the same file", []seat{
+			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon), "a", "E_S h1"},
 		}},
 	}
 	for _, tt := range tests {
@@ -86,7 +102,7 @@ func placeAll(t *testing.T, seats []seat) {
 	refused := map[string]string{}
 	for i, s := range seats {
 		res := result{
-			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, stem: stemOf(s.path), outcome: Stored,
+			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, rel: s.path, stem: stemOf(s.path), outcome: Stored,
 			channels: []solved{{channel: s.channel, samples: 1, digest: "-", data: []byte{0},
 				spectra: db.Spectra{Measures: map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1}}}},
 		}

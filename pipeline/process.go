@@ -29,18 +29,19 @@ const (
 // result is one file, read and solved.
 type result struct {
 	source   db.Source
+	rel      string // path below the folder that was named
 	stem     string // base name without extension, for identities that no header gives
 	outcome  Outcome
 	reason   string // why it was skipped, or where held content was first read
 	err      error  // why it was rejected
 	channels []solved
-	updates  []update // what the catalogue changes of held content
-	warnings []string // what the catalogue can no longer change of it
 }
 
 // solved is one channel with what was computed of it.
 type solved struct {
 	channel ingest.Channel // without samples
+	stated  ingest.Channel // what the catalogue says of it, and nothing else
+	matched bool           // whether the catalogue says anything
 	samples int
 	data    []byte // compressed samples
 	digest  string
@@ -70,7 +71,7 @@ func newReader(store Store, opts Options, grid db.Grid) *reader {
 // process reads, recognises, describes and solves one file. What is wrong with
 // the file is part of the result; an error is the store's or the context's.
 func (r *reader) process(ctx context.Context, file ingest.Found) (result, error) {
-	res := result{source: db.Source{Path: file.Path}, stem: stemOf(file.Path)}
+	res := result{source: db.Source{Path: file.Path}, rel: file.Rel, stem: stemOf(file.Path)}
 	if reason := r.skipReason(file); reason != "" {
 		return res.skipped(reason), ctx.Err()
 	}
@@ -83,7 +84,7 @@ func (r *reader) process(ctx context.Context, file ingest.Found) (result, error)
 		return res, err
 	}
 	if held {
-		return r.held(ctx, file, res, first)
+		return res.held(first), ctx.Err()
 	}
 	return r.parse(file, data, res), ctx.Err()
 }
@@ -136,8 +137,9 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	}
 	res.outcome = Stored
 	for i := range channels {
-		r.describe(file, res.stem, &channels[i])
+		stated, matched := r.describe(file, res.stem, &channels[i])
 		s, err := r.solve(channels[i])
+		s.stated, s.matched = stated, matched
 		if err != nil {
 			return res.rejected(&ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
 		}
@@ -148,13 +150,14 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 
 // describe completes what the file's content says by the file's name, where it
 // gives no direction, and by the catalogue, which has the last word.
-func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) {
+func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (stated ingest.Channel, matched bool) {
 	if c.Orientation.Axis == ingest.AxisUnknown {
 		_, c.Orientation = ingest.SplitStem(stem)
 	}
-	if r.catalogue != nil {
-		r.catalogue.Apply(file.Rel, c)
+	if r.catalogue == nil {
+		return stated, false
 	}
+	return r.catalogue.Apply(file.Rel, c)
 }
 
 func (r *reader) solve(c ingest.Channel) (solved, error) {
@@ -176,6 +179,11 @@ func (r *reader) solve(c ingest.Channel) (solved, error) {
 
 func (res result) skipped(reason string) result {
 	res.outcome, res.reason = Skipped, reason
+	return res
+}
+
+func (res result) held(first string) result {
+	res.outcome, res.reason = Held, "same content as "+first
 	return res
 }
 

@@ -296,13 +296,55 @@ func catalogue(t *testing.T, text string) *ingest.Catalogue {
 	return c
 }
 
+// What the catalogue states replaces what a header or an earlier run stored, at
+// once: a second run with the same catalogue changes nothing.
+func TestTheCatalogueOverridesWhatIsStored(t *testing.T) {
+	dir, store := archive(t, 1), newStore(t)
+	opts := options(dir)
+	opts.Catalogue = catalogue(t, "event,magnitude,magnitude_type\ninvented-20260312,5.0,ML\n")
+	run(t, store, opts)
+	put(t, dir, "later/ST7000.AT2", at2("Invented", "Site 7", "000", 77))
+	magnitudes := func() (out []string) {
+		for _, c := range componentsOf(t, store) {
+			out = append(out, fmt.Sprint(*c.Record.Event.Magnitude, c.Record.Event.MagnitudeType))
+		}
+		return out
+	}
+	opts.Catalogue = catalogue(t, "event,magnitude\ninvented-20260312,7.1\n")
+	for range 2 {
+		run(t, store, opts)
+		for _, m := range magnitudes() {
+			if m != "7.1" {
+				t.Errorf("magnitude and type = %q, want 7.1 of unknown type", m)
+			}
+		}
+	}
+}
+
+// A file of held content gets what the catalogue says of it, whether its twin
+// was stored in an earlier run or a moment ago.
+func TestTheCatalogueDescribesTwins(t *testing.T) {
+	text := "file,magnitude\ncopy.txt,7.7\n"
+	for _, runs := range []int{1, 2} {
+		dir, store := archive(t, 1), newStore(t)
+		for range runs {
+			opts := options(dir)
+			opts.Catalogue = catalogue(t, text)
+			run(t, store, opts)
+		}
+		if m := componentsOf(t, store)[0].Record.Event.Magnitude; m == nil || *m != 7.7 {
+			t.Errorf("after %d runs: magnitude %v, want 7.7", runs, m)
+		}
+	}
+}
+
 // A catalogue that comes later still describes what is held.
 func TestTheCatalogueDescribesHeldRecords(t *testing.T) {
 	dir, store := archive(t, 2), newStore(t)
 	run(t, store, options(dir))
 	opts := options(dir)
-	opts.Catalogue = catalogue(t, "event,station,magnitude,distance_km,vs30_m_s,siting\n"+
-		"invented-20260312,site-01,6.2,17.5,350,structure\n")
+	opts.Catalogue = catalogue(t, "event,station,magnitude,distance_km,vs30_m_s,siting,instrument,low_cut_hz\n"+
+		"invented-20260312,site-01,6.2,17.5,350,structure,Roof,0.3\n")
 	if got := run(t, store, opts); got.Stored != 0 {
 		t.Errorf("run = %+v", got)
 	}
@@ -313,7 +355,7 @@ func TestTheCatalogueDescribesHeldRecords(t *testing.T) {
 		}
 		found++
 		if c.Record.DistanceKM == nil || *c.Record.DistanceKM != 17.5 || c.Record.Event.Magnitude == nil || *c.Record.Event.Magnitude != 6.2 ||
-			c.Record.Siting != "structure" || *c.Record.Station.Vs30MPS != 350 {
+			c.Record.Siting != "structure" || c.Record.Instrument != "Roof" || c.LowCutHz == nil || *c.LowCutHz != 0.3 || *c.Record.Station.Vs30MPS != 350 {
 			t.Errorf("record = %+v, event %+v", c.Record, c.Record.Event)
 		}
 	}

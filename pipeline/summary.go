@@ -40,6 +40,7 @@ func (s *Summary) add(f FileReport) {
 		s.Channels += len(f.Causes)
 	case Held:
 		s.Held++
+		s.Channels += len(f.Causes)
 	case Skipped:
 		s.Skipped++
 	case Rejected:

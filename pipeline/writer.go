@@ -99,18 +99,11 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 }
 
 func (w *writer) storeFile(ctx context.Context, tx *db.Tx, res result) (FileReport, error) {
-	report := FileReport{Path: res.source.Path, Outcome: res.outcome, Reason: res.reason, Warnings: res.warnings}
-	// Two files of equal content may have been read at the same time.
-	if res.outcome == Stored {
-		first, held, err := tx.Held(ctx, res.source.SHA256)
-		if err != nil {
-			return report, err
-		}
-		if held {
-			report.Outcome, report.Reason = Held, "same content as "+first
-			return report, nil
-		}
+	var err error
+	if res, err = w.recheck(ctx, tx, res); err != nil {
+		return FileReport{}, err
 	}
+	report := FileReport{Path: res.source.Path, Outcome: res.outcome, Reason: res.reason}
 	if err := tx.ForgetRejections(ctx, res.source.Path, keepDigest(res)); err != nil {
 		return report, err
 	}
@@ -118,11 +111,38 @@ func (w *writer) storeFile(ctx context.Context, tx *db.Tx, res result) (FileRepo
 	case Stored:
 		return w.storeChannels(ctx, tx, res, report)
 	case Held:
-		return report, w.storeUpdates(ctx, tx, res.updates)
+		return w.storeHeld(ctx, tx, res, report)
 	case Rejected:
 		return w.reject(ctx, tx, res, report, 0, res.err)
 	}
 	return report, nil
+}
+
+// recheck looks again whether the content is held: two files of equal content
+// may have been read at the same time.
+func (w *writer) recheck(ctx context.Context, tx *db.Tx, res result) (result, error) {
+	if res.outcome != Stored {
+		return res, nil
+	}
+	first, held, err := tx.Held(ctx, res.source.SHA256)
+	if held {
+		res = res.held(first)
+	}
+	return res, err
+}
+
+// storeHeld applies the catalogue to held content, and repeats what stands
+// against its channels.
+func (w *writer) storeHeld(ctx context.Context, tx *db.Tx, res result, report FileReport) (FileReport, error) {
+	standing, err := tx.RejectionsOf(ctx, res.source.Path, res.source.SHA256)
+	if err != nil {
+		return report, err
+	}
+	for _, r := range standing {
+		report.Causes = append(report.Causes, Cause{Line: r.Line, Text: r.Cause})
+	}
+	report.Warnings, err = w.describeHeld(ctx, tx, res)
+	return report, err
 }
 
 // keepDigest names the content whose rejections still hold: those of single
@@ -139,7 +159,7 @@ func keepDigest(res result) string {
 func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, report FileReport) (FileReport, error) {
 	sourceID := int64(0)
 	for _, s := range res.channels {
-		p, err := place(ctx, tx, res.source, res.stem, &s.channel)
+		p, err := place(ctx, tx, res, &s.channel)
 		if err != nil {
 			if report, err = w.reject(ctx, tx, res, report, s.channel.Line, err); err != nil {
 				return report, err
@@ -171,54 +191,17 @@ func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, s solved, p placem
 	if err != nil {
 		return err
 	}
+	if s.matched {
+		if _, err := tx.PutRecord(ctx, recordOf(s.stated, p.code), true); err != nil {
+			return err
+		}
+	}
 	if err := tx.SetRoles(ctx, recordID, p.renamed); err != nil {
 		return err
 	}
 	c := componentOf(s, p.role)
 	c.SourceID = sourceID
 	return tx.AddComponent(ctx, recordID, c, s.data, s.digest, w.run.generation.ID, s.spectra)
-}
-
-func (w *writer) storeUpdates(ctx context.Context, tx *db.Tx, updates []update) error {
-	for _, u := range updates {
-		if _, err := tx.PutRecord(ctx, u.record, true); err != nil {
-			return err
-		}
-		if !u.turned {
-			continue
-		}
-		if err := turn(ctx, tx, u); err != nil {
-			return err
-		}
-	}
-	return nil
-}
-
-// turn stores a corrected orientation and renews the roles of its record.
-func turn(ctx context.Context, tx *db.Tx, u update) error {
-	c := componentOf(solved{channel: ingest.Channel{Orientation: u.orientation}}, "")
-	if err := tx.SetOrientation(ctx, u.componentID, c); err != nil {
-		return err
-	}
-	r, _, err := tx.FindRecord(ctx, u.record.Code)
-	if err != nil {
-		return err
-	}
-	orientations := make([]ingest.Orientation, len(r.Components))
-	for i, held := range r.Components {
-		orientations[i] = orientationOf(held)
-	}
-	renamed := map[string]string{}
-	for i, role := range ingest.AssignRoles(orientations) {
-		// A direction given twice keeps the roles as they are.
-		if role == "" {
-			return nil
-		}
-		if held := r.Components[i].Role; held != role {
-			renamed[held] = role
-		}
-	}
-	return tx.SetRoles(ctx, r.ID, renamed)
 }
 
 // reject stores one cause against the file.
