@@ -106,14 +106,25 @@ func applyStep(ctx context.Context, tx *sql.Tx, s step) error {
 	return err
 }
 
-// mark claims an empty file for this program and refuses another's.
-func mark(ctx context.Context, tx *sql.Tx) error {
-	var tables int
-	if err := tx.QueryRowContext(ctx, `SELECT count(*) FROM sqlite_schema`).Scan(&tables); err != nil {
+// claimable returns an error for a database that is neither a store nor empty.
+func claimable(ctx context.Context, q queryer) error {
+	var id, tables int
+	if err := q.QueryRowContext(ctx, "PRAGMA application_id").Scan(&id); err != nil {
 		return err
 	}
-	if tables > 0 {
+	if err := q.QueryRowContext(ctx, `SELECT count(*) FROM sqlite_schema`).Scan(&tables); err != nil {
+		return err
+	}
+	if id != applicationID && tables > 0 {
 		return errors.New("the file is a database of another program, not a swaybook store")
+	}
+	return nil
+}
+
+// mark claims an empty file for this program and refuses another's.
+func mark(ctx context.Context, tx *sql.Tx) error {
+	if err := claimable(ctx, tx); err != nil {
+		return err
 	}
 	_, err := tx.ExecContext(ctx, fmt.Sprintf("PRAGMA application_id = %d", applicationID))
 	return err

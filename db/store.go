@@ -63,6 +63,9 @@ func (s *Store) Close() error {
 func (s *Store) Path() string { return s.path }
 
 func openWriter(ctx context.Context, path string) (*Store, error) {
+	if err := refuseForeign(ctx, path); err != nil {
+		return nil, err
+	}
 	write, err := sql.Open("sqlite", dsn(path, "rwc", "_txlock=immediate&_pragma=cache_size(-32768)"))
 	if err != nil {
 		return nil, err
@@ -76,6 +79,24 @@ func openWriter(ctx context.Context, path string) (*Store, error) {
 		return nil, errors.Join(err, write.Close())
 	}
 	return &Store{path: path, write: write, read: read}, nil
+}
+
+// refuseForeign looks, without changing it, whether the file at path is another
+// program's.
+func refuseForeign(ctx context.Context, path string) error {
+	if info, err := os.Stat(path); err != nil || info.Size() == 0 {
+		return nil // a new store
+	}
+	look, err := sql.Open("sqlite", dsn(path, "ro", "_pragma=query_only(1)"))
+	if err != nil {
+		return err
+	}
+	defer look.Close()
+	err = claimable(ctx, look)
+	if isReadOnly(err) {
+		return nil // a log waits to be read; the writer will look again
+	}
+	return explain(err)
 }
 
 func prepareWriter(ctx context.Context, write *sql.DB) error {
@@ -118,7 +139,7 @@ func codeOf(err error) int {
 }
 
 func openReader(ctx context.Context, path string) (*Store, error) {
-	if _, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) {
+	if info, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) || err == nil && info.Size() == 0 {
 		return nil, ErrNoStore
 	}
 	read, err := openPool(path)

@@ -1,6 +1,7 @@
 package db
 
 import (
+	"bytes"
 	"context"
 	"database/sql"
 	"errors"
@@ -8,6 +9,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"runtime"
 	"strings"
 	"testing"
 	"testing/fstest"
@@ -137,8 +139,14 @@ func TestOpenRefuses(t *testing.T) {
 		t.Fatal(err)
 	}
 	raw.Close()
-	if _, err := Create(t.Context(), foreign); err == nil || !strings.Contains(err.Error(), "another program") {
-		t.Errorf("foreign database: %v", err)
+	before := must(os.ReadFile(foreign))
+	for name, open := range map[string]func(context.Context, string) (*Store, error){"Open": Open, "Create": Create} {
+		if _, err := open(t.Context(), foreign); err == nil || !strings.Contains(err.Error(), "another program") {
+			t.Errorf("%s of a foreign database: %v", name, err)
+		}
+	}
+	if !bytes.Equal(before, must(os.ReadFile(foreign))) {
+		t.Error("a foreign database was changed")
 	}
 	if _, err := Create(t.Context(), filepath.Join(dir, "no", "such", "folder.db")); err == nil {
 		t.Error("no error for a missing folder")
@@ -180,12 +188,43 @@ func TestMigrationsAreNumberedInOrder(t *testing.T) {
 	}
 }
 
-// A reader that meets an unfinished store brings it up to date.
-func TestOpenMigrates(t *testing.T) {
+// A question makes no store, and a store without a generation answers that it
+// is empty.
+func TestOpenOfNothing(t *testing.T) {
 	path := filepath.Join(t.TempDir(), "empty.db")
 	if err := os.WriteFile(path, nil, 0o644); err != nil {
 		t.Fatal(err)
 	}
+	if _, err := Open(t.Context(), path); !errors.Is(err, ErrNoStore) {
+		t.Errorf("Open of an empty file = %v, want ErrNoStore", err)
+	}
+	if info, err := os.Stat(path); err != nil || info.Size() != 0 {
+		t.Errorf("the empty file was changed: %v, %v", info, err)
+	}
+	if err := newStore(t).View(t.Context(), func(*Snapshot) error { return nil }); !errors.Is(err, ErrEmpty) {
+		t.Errorf("View = %v, want ErrEmpty", err)
+	}
+}
+
+// A store in a folder that may not be written to still answers.
+func TestOpenInAReadOnlyFolder(t *testing.T) {
+	if os.Geteuid() == 0 || runtime.GOOS == "windows" {
+		t.Skip("this user may write anywhere")
+	}
+	dir := t.TempDir()
+	path := filepath.Join(dir, "s.db")
+	if err := must(Create(t.Context(), path)).Close(); err != nil {
+		t.Fatal(err)
+	}
+	for _, c := range []struct {
+		path string
+		mode os.FileMode
+	}{{path, 0o444}, {dir, 0o555}} {
+		if err := os.Chmod(c.path, c.mode); err != nil {
+			t.Fatal(err)
+		}
+	}
+	t.Cleanup(func() { os.Chmod(dir, 0o755) })
 	s, err := Open(t.Context(), path)
 	if err != nil {
 		t.Fatal(err)

@@ -43,13 +43,10 @@ type Hints struct {
 	// StepS is the time step in s, 0 where not stated, and StepFrom its origin.
 	StepS    float64
 	StepFrom string
-	// ForAll says that what From names was stated once for many files, not for
-	// this one. It serves files that are silent; a fixed header that says
-	// otherwise is right, and only plain columns must agree with it, since their
-	// headers are free text.
+	// UnitForAll and StepForAll say that the unit, or the step, was stated once
+	// for many files, not for this one. It serves files that are silent; one that
+	// says otherwise is right; plain columns, whose headers are free text, warn.
 	UnitForAll, StepForAll bool
-
-	loose bool // the format's header outranks what was stated for all files
 }
 
 // Parse recognises the file by its content and reads its channels. It returns
@@ -71,9 +68,6 @@ func parse(data []byte, hints Hints) (string, []Channel, error) {
 	reader, err := recognise(text)
 	if err != nil {
 		return "", nil, err
-	}
-	if reader != (plain{}) {
-		hints.loose = true
 	}
 	channels, err := reader.Parse(text, hints)
 	if err != nil {

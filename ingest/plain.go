@@ -98,6 +98,7 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		if warning != "" {
 			c.warn("%s", warning)
 		}
+		warnUnused(&c, hints)
 		if rows.minus > 0 {
 			c.warn("line %d: U+2212 read as a minus sign", rows.minus)
 		}
@@ -113,6 +114,17 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		out = append(out, c)
 	}
 	return out, nil
+}
+
+// warnUnused warns that the file's own unit or step was taken, and not the one
+// stated for all files.
+func warnUnused(c *Channel, hints Hints) {
+	if unit, err := ParseUnit(hints.Unit); err == nil && hints.UnitForAll && unit.MPS2 != c.UnitMPS2 {
+		c.warn("the file says %s: %s from %s not used", c.Unit, unit.Name, hints.UnitFrom)
+	}
+	if hints.StepForAll && hints.StepS != 0 && math.Abs(hints.StepS-c.StepS) > stepAgreement*c.StepS {
+		c.warn("the file says a step of %.6g s: %.6g s from %s not used", c.StepS, hints.StepS, hints.StepFrom)
+	}
 }
 
 // warnOffset warns of a mean over a tenth of the peak, which stays in the

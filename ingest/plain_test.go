@@ -336,6 +336,28 @@ func TestTimeStepFindsMissingSamplesInCoarseTimes(t *testing.T) {
 	}
 }
 
+// What was stated for all files serves silent ones; a file that says otherwise
+// keeps its own, with a warning, and the same from the catalogue is an error.
+func TestPlainAgainstHintsForAll(t *testing.T) {
+	lines := []string{"time(s),acc(g)"}
+	for i := range 20 {
+		lines = append(lines, fmt.Sprintf("%.2f,%.3f", 0.02*float64(i), 0.1*math.Sin(float64(i))))
+	}
+	hints := Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.01, StepFrom: "--dt", StepForAll: true}
+	_, channels, err := parseLines(lines, hints)
+	if err != nil {
+		t.Fatal(err)
+	}
+	want := []string{"the file says g: gal from --unit not used", "the file says a step of 0.02 s: 0.01 s from --dt not used"}
+	if c := channels[0]; c.Unit != "g" || c.StepS != 0.02 || !slices.Equal(c.Warnings, want) {
+		t.Errorf("unit %s, step %g, warnings %q", c.Unit, c.StepS, c.Warnings)
+	}
+	hints.UnitForAll = false
+	if _, _, err := parseLines(lines, hints); err == nil || !strings.Contains(err.Error(), "the file says g, --unit says gal") {
+		t.Errorf("a unit for this file: %v", err)
+	}
+}
+
 // TestTimeStepRounding prints even times of many rates with few digits: they
 // must pass, and the step must come back.
 func TestTimeStepRounding(t *testing.T) {

@@ -155,7 +155,7 @@ func chooseUnit(stated statement, hints Hints) (unit Unit, warning string, err e
 	case err != nil:
 		return hint, fmt.Sprintf("line %d: unit %s not used, %s from %s taken", stated.line,
 			found(stated.text), hint.Name, orElse(hints.UnitFrom, "hint")), nil
-	case hints.UnitForAll && hints.loose:
+	case hints.UnitForAll:
 		return unit, "", nil
 	case hints.Unit != "" && hint.MPS2 != unit.MPS2:
 		return Unit{}, "", refuse(stated.line, "unit", "the file says %s, %s says %s",
@@ -170,7 +170,7 @@ const stepAgreement = 1e-3
 
 // checkStep compares the step in s that line says with the one in the hints.
 func checkStep(step float64, line int, hints Hints) error {
-	if hints.StepS == 0 || hints.StepForAll && hints.loose || math.Abs(step-hints.StepS) <= stepAgreement*math.Abs(step) {
+	if hints.StepS == 0 || hints.StepForAll || math.Abs(step-hints.StepS) <= stepAgreement*math.Abs(step) {
 		return nil
 	}
 	return refuse(line, "dt", "the file says %.6g s, %s says %.6g s", step, orElse(hints.StepFrom, "the hint"), hints.StepS)

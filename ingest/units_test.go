@@ -60,11 +60,10 @@ func TestChooseUnit(t *testing.T) {
 		{stated("g"), Hints{Unit: "gal"}, "", false},
 		{stated("g"), Hints{Unit: "counts"}, "", false},
 		{stated("counts"), Hints{Unit: "g"}, "", false},
-		{stated("g"), Hints{Unit: "gal", UnitForAll: true}, "", false},
-		{stated("g"), Hints{Unit: "gal", UnitForAll: true, loose: true}, "g", false},
-		{stated("g"), Hints{Unit: "gal", loose: true}, "", false},
-		{stated("furlong"), Hints{Unit: "gal", UnitForAll: true, loose: true}, "", false},
-		{statement{}, Hints{Unit: "gal", UnitForAll: true, loose: true}, "gal", false},
+		{stated("g"), Hints{Unit: "gal", UnitForAll: true}, "g", false},
+		{stated("gal"), Hints{Unit: "cm/s2", UnitForAll: true}, "gal", false},
+		{stated("furlong"), Hints{Unit: "gal", UnitForAll: true}, "", false},
+		{statement{}, Hints{Unit: "gal", UnitForAll: true}, "gal", false},
 		{statement{}, Hints{}, "", false},
 	}
 	for _, k := range cases {

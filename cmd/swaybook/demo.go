@@ -2,8 +2,11 @@ package main
 
 import (
 	"context"
+	"errors"
 	"io"
+	"os"
 	"path/filepath"
+	"strings"
 
 	"github.com/urfave/cli/v2"
 
@@ -61,7 +64,9 @@ func newDemoOptions(c *cli.Context) (o demoOptions, err error) {
 		region:  demo.Options{Events: c.Int("events"), Stations: c.Int("stations"), Seed: c.Int("seed"), Damaged: true},
 		monitor: newMonitor(logger, c.App.ErrWriter, c.Bool("quiet")),
 	}
-	if !c.IsSet("store") {
+	// The environment names the user's own store, which is no place for invented
+	// records; only the flag itself can ask for that.
+	if !c.IsSet("store") || o.store == os.Getenv(storeVariable) {
 		o.store = filepath.Join(o.dir, "demo.db")
 	}
 	return o, nil
@@ -81,7 +86,7 @@ func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
 	if o.filesOnly || p.err != nil {
 		return p.err
 	}
-	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s\n", o.store, o.dir, written.Catalogue)
+	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s\n", quoted(o.store), quoted(o.dir), quoted(written.Catalogue))
 	if p.err != nil {
 		return p.err
 	}
@@ -93,7 +98,15 @@ func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
 		return err
 	}
 	defer store.Close()
-	return demoQueries(ctx, store, o.store, w)
+	return demoQueries(ctx, store, quoted(o.store), w)
+}
+
+// quoted is a word as a shell wants it.
+func quoted(word string) string {
+	if strings.ContainsAny(word, " '\"$&;()") {
+		return "'" + strings.ReplaceAll(word, "'", `'\''`) + "'"
+	}
+	return word
 }
 
 // demoIngest runs the ingest. That the damaged files are rejected is the point
@@ -104,7 +117,7 @@ func demoIngest(ctx context.Context, o demoOptions, catalogue string, w io.Write
 	if err := in.readCatalogue(catalogue); err != nil {
 		return err
 	}
-	if err := runIngest(ctx, in, w); err != nil && err != errRejected {
+	if err := runIngest(ctx, in, w); err != nil && !errors.Is(err, errRejected) {
 		return err
 	}
 	return nil

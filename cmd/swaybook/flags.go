@@ -8,7 +8,6 @@ import (
 	"log/slog"
 	"os"
 	"slices"
-	"strconv"
 	"strings"
 
 	"github.com/urfave/cli/v2"
@@ -17,14 +16,26 @@ import (
 	"swaybook/query"
 )
 
-const defaultStore = "swaybook.db"
+const (
+	defaultStore  = "swaybook.db"
+	storeVariable = "SWAYBOOK_STORE"
+)
 
 func globalFlags() []cli.Flag {
 	return []cli.Flag{
-		&cli.StringFlag{Name: "store", Value: defaultStore, EnvVars: []string{"SWAYBOOK_STORE"}, Usage: "the store, one SQLite `FILE`"},
+		&cli.StringFlag{Name: "store", Value: defaultStore, EnvVars: []string{storeVariable}, Usage: "the store, one SQLite `FILE`"},
 		&cli.StringFlag{Name: "log", Value: "text", Usage: "form of the messages on stderr: text or json"},
 		&cli.BoolFlag{Name: "quiet", Usage: "no progress and no messages but errors"},
 	}
+}
+
+// checkGlobalFlags holds for every command what none looks at itself.
+func checkGlobalFlags(c *cli.Context) error {
+	if store := c.String("store"); store == "" || strings.HasPrefix(store, ":") {
+		return usagef("--store %q: want the name of a file", store)
+	}
+	_, err := newLogger(c)
+	return err
 }
 
 // newLogger returns the logger that --log and --quiet ask for.
@@ -63,21 +74,31 @@ func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) erro
 	return f(c.Context, store)
 }
 
-// periodList reads a list of periods in s from text such as "0.1,0.2,1" or,
-// after @, from a file of numbers separated by blanks, commas or lines, with #
-// comments. The result is sorted.
+// The periods that a grid may have, in s: beyond them lie mistakes in the unit.
+const (
+	shortestPeriod = 1e-3
+	longestPeriod  = 1e3
+)
+
+// periodList reads a list of periods such as "0.1,0.2s,800ms" or, after @, from
+// a file of periods separated by blanks, commas or lines, with # comments. A bare
+// number is in s. The result is sorted.
 func periodList(text string) ([]float64, error) {
 	words, err := listWords(text)
 	if err != nil {
 		return nil, err
 	}
-	periods := make([]float64, len(words))
-	for i, w := range words {
-		t, err := strconv.ParseFloat(strings.TrimSuffix(w, "s"), 64)
-		if err != nil || !(t > 0) {
-			return nil, usagef("--periods: %q is not a positive period in s", w)
+	if len(words) == 0 {
+		return nil, usagef("--periods: the list is empty")
+	}
+	periods, err := query.ParsePeriods(strings.Join(words, ","))
+	if err != nil {
+		return nil, err
+	}
+	for _, t := range periods {
+		if t < shortestPeriod || t > longestPeriod {
+			return nil, usagef("--periods: %g s is outside %g to %g s", t, shortestPeriod, longestPeriod)
 		}
-		periods[i] = t
 	}
 	return sortedSet("--periods", periods)
 }

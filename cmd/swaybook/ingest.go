@@ -3,9 +3,12 @@ package main
 import (
 	"context"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"io"
+	"maps"
 	"os"
+	"slices"
 	"time"
 
 	"github.com/urfave/cli/v2"
@@ -42,6 +45,9 @@ func ingestCommand() *cli.Command {
 	}
 }
 
+// maxWorkers is more than any machine can feed.
+const maxWorkers = 1024
+
 type ingestOptions struct {
 	store    string
 	pipeline pipeline.Options
@@ -62,8 +68,13 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	o.pipeline = pipelineOptions(o.store, o.monitor)
 	o.pipeline.Paths = c.Args().Slice()
 	o.pipeline.Workers = c.Int("workers")
-	if c.Int("workers") < 0 {
-		return o, usagef("--workers %d: want a positive number", c.Int("workers"))
+	if n := c.Int("workers"); c.IsSet("workers") && (n < 1 || n > maxWorkers) {
+		return o, usagef("--workers %d: want 1 to %d", n, maxWorkers)
+	}
+	for _, path := range o.pipeline.Paths {
+		if _, err := os.Stat(path); err != nil {
+			return o, fmt.Errorf("find records: %w", err) // before a store is made
+		}
 	}
 	if o.pipeline.Hints, err = ingestHints(c); err != nil {
 		return o, err
@@ -126,12 +137,12 @@ func (o *ingestOptions) readCatalogue(name string) error {
 }
 
 // runIngest fills the store and prints the summary.
-func runIngest(ctx context.Context, o ingestOptions, w io.Writer) error {
+func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 	store, err := db.Create(ctx, o.store)
 	if err != nil {
 		return err
 	}
-	defer store.Close()
+	defer func() { err = errors.Join(err, store.Close()) }()
 	summary, err := pipeline.Run(ctx, store, o.pipeline)
 	o.monitor.finish()
 	if err != nil && summary.Files == 0 {
@@ -156,13 +167,21 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) error {
 type ingestReport struct {
 	Store string `json:"store"`
 	pipeline.Summary
-	SkippedFiles  []fileNote `json:"skipped_files"`
-	RejectedFiles []fileNote `json:"rejected_files"`
-	// Omitted counts the notes beyond the limit that the lists keep.
-	Omitted  int            `json:"omitted_notes"`
-	Warnings []warningCount `json:"warnings"`
+	ByCause       []causeCount `json:"rejected_by_cause"`
+	SkippedFiles  []fileNote   `json:"skipped_files"`
+	RejectedFiles []fileNote   `json:"rejected_files"`
+	// Beyond the limit of the lists, files are only counted.
+	SkippedOmitted  int            `json:"skipped_files_omitted"`
+	RejectedOmitted int            `json:"rejected_files_omitted"`
+	Warnings        []warningCount `json:"warnings"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
+}
+
+// causeCount counts the rejections of one cause, its particulars left out.
+type causeCount struct {
+	Cause string `json:"cause"`
+	Count int    `json:"count"`
 }
 
 // fileNote is one file that was not stored and why.
@@ -174,7 +193,14 @@ type fileNote struct {
 
 func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) ingestReport {
 	m := o.monitor
-	r := ingestReport{Store: o.store, Summary: summary, SkippedFiles: m.skipped, RejectedFiles: m.rejected, Omitted: m.omitted, Warnings: m.warnings, Catalogue: []string{}}
+	r := ingestReport{
+		Store: o.store, Summary: summary, ByCause: []causeCount{}, Warnings: m.warnings, Catalogue: []string{},
+		SkippedFiles: m.skipped.files, SkippedOmitted: m.skipped.omitted, RejectedFiles: m.rejected.files, RejectedOmitted: m.rejected.omitted,
+	}
+	for _, cause := range slices.Sorted(maps.Keys(m.causes)) {
+		r.ByCause = append(r.ByCause, causeCount{cause, m.causes[cause]})
+	}
+	slices.SortStableFunc(r.ByCause, func(a, b causeCount) int { return b.Count - a.Count })
 	if c := o.pipeline.Catalogue; c != nil {
 		for _, column := range c.UnknownColumns {
 			r.Catalogue = append(r.Catalogue, "unknown column "+column.String())
@@ -209,11 +235,14 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	if r.Stored == 0 {
 		p.printf("Nothing new was stored.\n")
 	}
-	p.notes("Skipped", r.SkippedFiles)
-	p.notes("Rejected", r.RejectedFiles)
-	if r.Omitted > 0 {
-		p.printf("… and %d more; see: swaybook --store %s query records --rejected\n", r.Omitted, r.Store)
+	p.notes("Skipped:", r.SkippedFiles, r.SkippedOmitted, "--json lists them")
+	if len(r.RejectedFiles) > maxLines {
+		p.printf("Rejected by cause:\n")
+		for _, c := range r.ByCause {
+			p.printf("  %7d  %s\n", c.Count, c.Cause)
+		}
 	}
+	p.notes("Rejected:", r.RejectedFiles, r.RejectedOmitted, "see: swaybook --store "+r.Store+" query records --rejected")
 	for i, w := range r.Warnings {
 		if i == 0 {
 			p.printf("Doubtful, and kept with the components:\n")
@@ -226,11 +255,19 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	return p.err
 }
 
-func (p *printer) notes(title string, notes []fileNote) {
+// maxLines is how many single files the text names of a kind.
+const maxLines = 30
+
+// notes prints the first files of a list and where the rest can be seen.
+func (p *printer) notes(title string, notes []fileNote, omitted int, rest string) {
 	if len(notes) > 0 {
-		p.printf("%s:\n", title)
+		p.printf("%s\n", title)
 	}
-	for _, n := range notes {
+	for i, n := range notes {
+		if i == maxLines {
+			p.printf("  … and %d more; %s\n", len(notes)-maxLines+omitted, rest)
+			return
+		}
 		if n.Line > 0 {
 			p.printf("  %s:%d: %s\n", n.Source, n.Line, n.Cause)
 		} else {

@@ -46,7 +46,8 @@ func usagef(format string, args ...any) error {
 
 func main() {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
-	defer stop()
+	// The first signal ends the work in order, the second at once.
+	context.AfterFunc(ctx, stop)
 	os.Exit(run(ctx, os.Args, os.Stdout, os.Stderr))
 }
 
@@ -93,7 +94,8 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Description: "Reads record files into a store, computes their response spectra, and answers for a structure\n" +
 			"what displacement, base shear and base moment the recorded motions produced.\n\n" +
 			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected; 130 interrupted.\n\n" + caution,
-		Flags: globalFlags(),
+		Flags:  globalFlags(),
+		Before: checkGlobalFlags,
 		Commands: []*cli.Command{
 			ingestCommand(),
 			queryCommand(),

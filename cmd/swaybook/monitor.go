@@ -4,6 +4,7 @@ import (
 	"io"
 	"log/slog"
 	"os"
+	"regexp"
 	"time"
 
 	"github.com/schollz/progressbar/v3"
@@ -15,8 +16,9 @@ import (
 const (
 	// logInterval paces the progress lines where stderr is no terminal.
 	logInterval = 10 * time.Second
-	// maxNotes bounds what a report keeps of single files; the store has all.
-	maxNotes = 200
+	// maxNotes bounds the memory of a report on an archive gone wrong; what it
+	// leaves out is counted.
+	maxNotes = 10_000
 )
 
 // monitor shows a run's progress, as a bar on a terminal and as log lines
@@ -31,9 +33,23 @@ type monitor struct {
 	started  time.Time
 	logged   time.Time
 
-	skipped, rejected []fileNote
-	omitted           int
+	skipped, rejected notes
+	causes            map[string]int // rejections by cause
 	warnings          []warningCount
+}
+
+// notes is a list of single files, the first of them.
+type notes struct {
+	files   []fileNote
+	omitted int
+}
+
+func (n *notes) add(f fileNote) {
+	if len(n.files) >= maxNotes {
+		n.omitted++
+		return
+	}
+	n.files = append(n.files, f)
 }
 
 // warningCount is one warning with how often it was given and where first.
@@ -47,7 +63,7 @@ func newMonitor(logger *slog.Logger, stderr io.Writer, quiet bool) *monitor {
 	now := time.Now()
 	return &monitor{
 		logger: logger, stderr: stderr, terminal: isTerminal(stderr), quiet: quiet, started: now, logged: now,
-		skipped: []fileNote{}, rejected: []fileNote{}, warnings: []warningCount{},
+		skipped: notes{files: []fileNote{}}, rejected: notes{files: []fileNote{}}, causes: map[string]int{}, warnings: []warningCount{},
 	}
 }
 
@@ -73,10 +89,11 @@ func (m *monitor) file(p pipeline.Progress) {
 
 func (m *monitor) note(f pipeline.FileReport) {
 	if f.Outcome == pipeline.Skipped {
-		m.keep(&m.skipped, fileNote{Source: f.Path, Cause: f.Reason})
+		m.skipped.add(fileNote{Source: f.Path, Cause: f.Reason})
 	}
 	for _, c := range f.Causes {
-		m.keep(&m.rejected, fileNote{Source: f.Path, Line: c.Line, Cause: c.Text})
+		m.rejected.add(fileNote{Source: f.Path, Line: c.Line, Cause: c.Text})
+		m.causes[general(c.Text)]++
 	}
 	for _, text := range f.Warnings {
 		m.count(text, f.Path)
@@ -99,19 +116,17 @@ func (m *monitor) count(text, path string) {
 		}
 	}
 	if len(m.warnings) >= maxNotes {
-		m.omitted++
 		return
 	}
 	m.warnings = append(m.warnings, warningCount{Text: text, Count: 1, First: path})
 }
 
-func (m *monitor) keep(list *[]fileNote, n fileNote) {
-	if len(*list) >= maxNotes {
-		m.omitted++
-		return
-	}
-	*list = append(*list, n)
-}
+// particulars are what differs between files with one cause: names, quoted
+// words and numbers.
+var particulars = regexp.MustCompile(`"[^"]*"|\brecord \S+|\bfrom \S+?\)|[-+]?[0-9][-+.0-9eE]*`)
+
+// general is a cause without its particulars, by which causes are counted.
+func general(cause string) string { return particulars.ReplaceAllString(cause, "…") }
 
 func (m *monitor) showBar(p pipeline.Progress) {
 	if m.bar == nil {

@@ -228,6 +228,8 @@ func runRecords(ctx context.Context, store *db.Store, o recordsOptions, w, stder
 		fmt.Fprintln(stderr, empty)
 	} else if err != nil {
 		return err
+	} else if o.format != query.FormatTable {
+		fmt.Fprint(stderr, answer.Selection.Remarks())
 	}
 	return answer.Write(w, o.format)
 }
