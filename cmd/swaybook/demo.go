@@ -4,7 +4,6 @@ import (
 	"context"
 	"errors"
 	"io"
-	"os"
 	"path/filepath"
 	"strings"
 
@@ -66,7 +65,7 @@ func newDemoOptions(c *cli.Context) (o demoOptions, err error) {
 	}
 	// The environment names the user's own store, which is no place for invented
 	// records; only the flag itself can ask for that.
-	if !c.IsSet("store") || o.store == os.Getenv(storeVariable) {
+	if !c.IsSet("store") {
 		o.store = filepath.Join(o.dir, "demo.db")
 	}
 	return o, nil

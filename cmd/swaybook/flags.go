@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
@@ -23,15 +24,24 @@ const (
 
 func globalFlags() []cli.Flag {
 	return []cli.Flag{
-		&cli.StringFlag{Name: "store", Value: defaultStore, EnvVars: []string{storeVariable}, Usage: "the store, one SQLite `FILE`"},
+		&cli.StringFlag{Name: "store", Usage: "the store, one SQLite `FILE` (default: the variable " + storeVariable + ", else " + defaultStore + ")"},
 		&cli.StringFlag{Name: "log", Value: "text", Usage: "form of the messages on stderr: text or json"},
 		&cli.BoolFlag{Name: "quiet", Usage: "no progress and no messages but errors"},
 	}
 }
 
+// storePath is the store that the flag names, else the environment, which does
+// not count where it is empty.
+func storePath(c *cli.Context) string {
+	if c.IsSet("store") {
+		return c.String("store")
+	}
+	return cmp.Or(os.Getenv(storeVariable), defaultStore)
+}
+
 // checkGlobalFlags holds for every command what none looks at itself.
 func checkGlobalFlags(c *cli.Context) error {
-	if store := c.String("store"); store == "" || strings.HasPrefix(store, ":") {
+	if store := storePath(c); store == "" || strings.HasPrefix(store, ":") {
 		return usagef("--store %q: want the name of a file", store)
 	}
 	_, err := newLogger(c)
@@ -63,9 +73,9 @@ func noArguments(c *cli.Context) error {
 
 // withStore opens the store for reading around f.
 func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
-	store, err := db.Open(c.Context, c.String("store"))
+	store, err := db.Open(c.Context, storePath(c))
 	if errors.Is(err, db.ErrNoStore) {
-		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH", err, c.String("store"))
+		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH", err, storePath(c))
 	}
 	if err != nil {
 		return err

@@ -63,7 +63,7 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	if err != nil {
 		return o, err
 	}
-	o.store, o.json = c.String("store"), c.Bool("json")
+	o.store, o.json = storePath(c), c.Bool("json")
 	o.monitor = newMonitor(logger, c.App.ErrWriter, c.Bool("quiet"))
 	o.pipeline = pipelineOptions(o.store, o.monitor)
 	o.pipeline.Paths = c.Args().Slice()
