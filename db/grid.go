@@ -15,9 +15,6 @@ import (
 // or solver than the one asked for.
 var ErrOtherGeneration = errors.New("store was computed otherwise")
 
-// IsZero reports whether the grid is empty.
-func (g Grid) IsZero() bool { return len(g.PeriodsS) == 0 && len(g.Dampings) == 0 }
-
 // Equal reports whether both grids hold the same values in the same order.
 func (g Grid) Equal(other Grid) bool {
 	return slices.Equal(g.PeriodsS, other.PeriodsS) && slices.Equal(g.Dampings, other.Dampings)
