@@ -70,8 +70,8 @@ func TestPlace(t *testing.T) {
 			{at(horizontal(320), "", noon), "a", "E_S h2"}, {at(horizontal(40), "", noon), "b", "E_S h1"},
 		}},
 		{"components of a later trigger may straddle a second", []seat{
-			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon.Add(40 * time.Second)), "b", "E_S_T120040 h1"},
-			{at(horizontal(90), "", noon.Add(41 * time.Second)), "c", "E_S_T120040 h2"}, {at(vertical, "", noon.Add(39 * time.Second)), "d", "E_S_T120040 v"},
+			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon.Add(40*time.Second)), "b", "E_S_T120040 h1"},
+			{at(horizontal(90), "", noon.Add(41*time.Second)), "c", "E_S_T120040 h2"}, {at(vertical, "", noon.Add(39*time.Second)), "d", "E_S_T120040 v"},
 		}},
 		{"equal stems in folders of one name", []seat{
 			{anonymous, "EV1/records/run1.csv", "run1 h1"}, {anonymous, "EV2/records/run1.csv", "run1_ev2-records h1"},

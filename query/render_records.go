@@ -10,22 +10,27 @@ import (
 // as a table. The error is a UsageError for an unknown format and otherwise one
 // of w.
 func (a *RecordsAnswer) Write(w io.Writer, format Format) error {
+	return writeRows(w, "records", format, a.Rows, a.table, a.csv)
+}
+
+// writeRows writes a list of rows in one of the formats.
+func writeRows[T any](w io.Writer, what string, format Format, rows []T, table, csv func() []byte) error {
 	var text []byte
 	var err error
 	switch format {
 	case FormatTable, "":
-		text = a.table()
+		text = table()
 	case FormatCSV:
-		text = a.csv()
+		text = csv()
 	case FormatJSON:
-		text, err = jsonRows(a.Rows)
+		text, err = jsonRows(rows)
 	default:
 		_, err = ParseFormat(string(format))
 	}
 	if err != nil {
 		return err
 	}
-	return writeText(w, "records", text)
+	return writeText(w, what, text)
 }
 
 func (a *RecordsAnswer) table() []byte {
@@ -96,22 +101,7 @@ func (r *RecordRow) csv(l *csvLine) {
 // Write renders the list. The error is a UsageError for an unknown format and
 // otherwise one of w.
 func (a *RejectionsAnswer) Write(w io.Writer, format Format) error {
-	var text []byte
-	var err error
-	switch format {
-	case FormatTable, "":
-		text = a.table()
-	case FormatCSV:
-		text = a.csv()
-	case FormatJSON:
-		text, err = jsonRows(a.Rows)
-	default:
-		_, err = ParseFormat(string(format))
-	}
-	if err != nil {
-		return err
-	}
-	return writeText(w, "rejections", text)
+	return writeRows(w, "rejections", format, a.Rows, a.table, a.csv)
 }
 
 func (a *RejectionsAnswer) table() []byte {
