@@ -105,7 +105,7 @@ func fastOrdinate(field []byte, powers *[powersKnown]wide) (float64, bool) {
 	hi := float64(digits)
 	lo := float64(int64(digits) - int64(hi))
 	p := powers[at]
-	product := hi * p.hi
+	product := float64(hi * p.hi)
 	rest := math.FMA(hi, p.hi, -product)
 	return product + (rest + (float64(hi*p.lo) + float64(lo*p.hi))), true
 }

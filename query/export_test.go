@@ -27,7 +27,9 @@ func export(t *testing.T, store *db.Store, q ExportQuestion) (string, *ExportSum
 }
 
 // TestExportEqualsView: the export is the store's view in another coat: the
-// same rows in the same order with the same bits.
+// same rows in the same order. The numbers agree to the last digit but one:
+// where the compiler fuses multiplication and addition (arm64, GOAMD64=v3), the
+// SQLite in pure Go reads decimals with an error of the last bit.
 func TestExportEqualsView(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
 	text, summary := export(t, store, ExportQuestion{})
@@ -41,8 +43,10 @@ func TestExportEqualsView(t *testing.T) {
 		t.Fatal(err)
 	}
 	defer rows.Close()
-	want := strings.Builder{}
-	want.WriteString("record,component,damping,period_s,sd_m,psv_m_s,psa_g\n")
+	got := strings.Split(strings.TrimSpace(text), "\n")
+	if got[0] != "record,component,damping,period_s,sd_m,psv_m_s,psa_g" {
+		t.Errorf("header %s", got[0])
+	}
 	n := 0
 	for rows.Next() {
 		var record, component string
@@ -50,22 +54,23 @@ func TestExportEqualsView(t *testing.T) {
 		if err := rows.Scan(&record, &component, &x[0], &x[1], &x[2], &x[3], &x[4]); err != nil {
 			t.Fatal(err)
 		}
-		want.WriteString(record + "," + component)
-		for _, v := range x {
-			want.WriteString("," + strconv.FormatFloat(v, 'g', -1, 64))
-		}
-		want.WriteString("\n")
 		n++
+		fields := strings.Split(got[min(n, len(got)-1)], ",")
+		same := len(fields) == 7 && fields[0] == record && fields[1] == component
+		for i := 0; same && i < len(x); i++ {
+			v, err := strconv.ParseFloat(fields[2+i], 64)
+			same = err == nil && math.Abs(v-x[i]) <= 4e-16*math.Abs(x[i])
+		}
+		if !same {
+			t.Errorf("row %d: exported %q, view %s %s %v", n, fields, record, component, x)
+		}
 	}
 	if err := rows.Err(); err != nil {
 		t.Fatal(err)
 	}
 	// Eleven components, two dampings, four periods.
-	if n != 11*2*4 || summary.Rows != n {
+	if n != 11*2*4 || summary.Rows != n || len(got) != n+1 {
 		t.Errorf("%d rows in the view, %d exported, want 88", n, summary.Rows)
-	}
-	if text != want.String() {
-		t.Errorf("export\n%s\nview\n%s", text, want.String())
 	}
 }
 
