@@ -1,0 +1,366 @@
+// Command generate writes the assembly of package kernel and its Go stubs:
+//
+//	go run . -out ../kernel_amd64.s -stubs ../kernel_amd64.go -pkg kernel
+//
+// Blocks are pointed to by their first number, because this module does not see
+// their types. Every kernel is written once for both widths of vector. What differs is the
+// number of lanes a vector holds, the number of registers there are, and how
+// lanes are compared.
+package main
+
+import (
+	"fmt"
+
+	. "github.com/mmcloughlin/avo/build"
+	"github.com/mmcloughlin/avo/operand"
+	"github.com/mmcloughlin/avo/reg"
+)
+
+// lanes is kernel.Lanes; row is the size in bytes of one number for each.
+const (
+	lanes = 32
+	row   = lanes * 8
+)
+
+// level is a width of vector.
+type level struct {
+	name    string
+	width   int  // lanes of a vector
+	vectors int  // vectors in flight: four hide the latency of a step
+	keep    bool // whether registers suffice for coefficients
+}
+
+var levels = []level{{"AVX2", 4, 4, false}, {"AVX512", 8, 4, true}}
+
+func main() {
+	ConstraintExpr("!noasm")
+	for _, l := range levels {
+		l.marchSlow(false)
+		l.marchSlow(true)
+		l.marchFast(false)
+		l.marchFast(true)
+		l.screen(false)
+		l.screen(true)
+		l.greatest()
+	}
+	Generate()
+}
+
+func (l level) vector() reg.VecVirtual {
+	if l.width == 8 {
+		return ZMM()
+	}
+	return YMM()
+}
+
+func (l level) some() []reg.VecVirtual {
+	list := make([]reg.VecVirtual, l.vectors)
+	for i := range list {
+		list[i] = l.vector()
+	}
+	return list
+}
+
+// absolute returns a register that holds everything but sign bits.
+func (l level) absolute() reg.VecVirtual {
+	mask := l.vector()
+	if l.width == 8 {
+		VPTERNLOGQ(operand.U8(0xff), mask, mask, mask)
+	} else {
+		VPCMPEQQ(mask, mask, mask)
+	}
+	VPSRLQ(operand.U8(1), mask, mask)
+	return mask
+}
+
+// and puts x AND y into z. The integer form needs nothing beyond the base set
+// of the wide vectors.
+func (l level) and(x, y, z operand.Op) {
+	if l.width == 8 {
+		VPANDQ(x, y, z)
+	} else {
+		VPAND(x, y, z)
+	}
+}
+
+func (l level) zero(x reg.VecVirtual) {
+	if l.width == 8 {
+		VPXORQ(x, x, x)
+	} else {
+		VPXOR(x, x, x)
+	}
+}
+
+// passes repeats body for as many lanes as are in flight, with the byte offset
+// of the first. Pointers to rows are moved on by step.
+func (l level) passes(body func(offset, pass int)) {
+	for pass := range lanes / (l.width * l.vectors) {
+		body(pass*l.width*l.vectors*8, pass)
+	}
+}
+
+// at is element i of vectors that begin at row r of a block.
+func (l level) at(base reg.Register, r, offset, v int) operand.Mem {
+	return operand.Mem{Base: base, Disp: r*row + offset + v*l.width*8}
+}
+
+// coefficient is row r of a block, in registers where they suffice.
+func (l level) coefficient(base reg.Register, r, offset int, keep bool) []operand.Op {
+	list := make([]operand.Op, l.vectors)
+	for v := range list {
+		list[v] = l.at(base, r, offset, v)
+		if keep {
+			x := l.vector()
+			VMOVUPD(list[v], x)
+			list[v] = x
+		}
+	}
+	return list
+}
+
+// input is what a march reads: pointers to coefficients, states and ground, the
+// number of steps, and where a trace goes.
+type input struct{ q, from, to, ground, steps, rows reg.Register }
+
+func (l level) open(form string, trace bool) input {
+	kind, result := "march", "from, to, ground *float64, steps int"
+	if trace {
+		kind, result = "trace", "from, ground *float64, steps int, rows *float64"
+	}
+	TEXT(kind+form+l.name, NOSPLIT, "func(q, "+result+")")
+	Pragma("noescape")
+	in := input{
+		q: Load(Param("q"), GP64()), from: Load(Param("from"), GP64()),
+		ground: Load(Param("ground"), GP64()), steps: Load(Param("steps"), GP64()),
+	}
+	Doc(fmt.Sprintf("%s%s%s is %s%sGeneric for vectors of %d lanes.", kind, form, l.name, kind, form, l.width))
+	if trace {
+		in.rows = Load(Param("rows"), GP64())
+	} else {
+		in.to = Load(Param("to"), GP64())
+	}
+	return in
+}
+
+// loop runs body for each step, with the ground moved on by one sample, and for
+// each row of a trace.
+func (in input) loop(name string, ground, steps, rows reg.Register, body func()) {
+	TESTQ(steps, steps)
+	JLE(operand.LabelRef(name + "_done"))
+	Label(name)
+	body()
+	ADDQ(operand.Imm(8), ground)
+	if rows != nil {
+		ADDQ(operand.U32(row), rows)
+	}
+	DECQ(steps)
+	JNZ(operand.LabelRef(name))
+	Label(name + "_done")
+}
+
+// cursors copies the registers that a pass moves.
+func (in input) cursors() (ground, steps, rows reg.Register) {
+	g, n := GP64(), GP64()
+	MOVQ(in.ground, g)
+	MOVQ(in.steps, n)
+	if in.rows == nil {
+		return g, n, nil
+	}
+	r := GP64()
+	MOVQ(in.rows, r)
+	return g, n, r
+}
+
+// Rows of the blocks, in the order of their fields.
+const (
+	slowDecay, slowStiffness, slowMiddle, slowOldest = 0, 1, 2, 3
+	fastYY, fastYZ, fastZY, fastZZ, fastJump         = 0, 1, 2, 3, 4
+	markX, markY, markPeak                           = 0, 1, 2
+)
+
+func (l level) marchSlow(trace bool) {
+	in := l.open("Slow", trace)
+	mask := l.absolute()
+	l.passes(func(offset, pass int) {
+		ground, steps, rows := in.cursors()
+		u, w, peak := l.some(), l.some(), l.some()
+		for v := range u {
+			VMOVUPD(l.at(in.from, markX, offset, v), u[v])
+			VMOVUPD(l.at(in.from, markY, offset, v), w[v])
+			if !trace {
+				l.and(mask, u[v], peak[v])
+			}
+		}
+		decay := l.coefficient(in.q, slowDecay, offset, l.keep)
+		stiffness := l.coefficient(in.q, slowStiffness, offset, l.keep)
+		middle := l.coefficient(in.q, slowMiddle, offset, l.keep)
+		oldest := l.coefficient(in.q, slowOldest, offset, l.keep)
+		x, y := l.vector(), l.vector()
+		VBROADCASTSD(operand.Mem{Base: ground}, x)
+		VBROADCASTSD(operand.Mem{Base: ground, Disp: 8}, y)
+		newest := operand.Mem{Base: ground, Disp: 16}
+		in.loop(fmt.Sprintf("step%d", pass), ground, steps, rows, func() {
+			for v := range u {
+				t := l.vector()
+				VBROADCASTSD(newest, t)
+				VFMADD231PD(middle[v], y, t)
+				VFMADD231PD(oldest[v], x, t)
+				VFMADD132PD(decay[v], t, w[v])
+				VFNMADD231PD(stiffness[v], u[v], w[v])
+				VADDPD(w[v], u[v], u[v])
+				if trace {
+					VMOVUPD(u[v], l.at(rows, 0, offset, v))
+				} else {
+					l.and(mask, u[v], t)
+					VMAXPD(t, peak[v], peak[v])
+				}
+			}
+			VMOVAPD(y, x)
+			VBROADCASTSD(newest, y)
+		})
+		if !trace {
+			l.leave(in, offset, u, w, peak)
+		}
+	})
+	VZEROUPPER()
+	RET()
+}
+
+func (l level) leave(in input, offset int, x, y, peak []reg.VecVirtual) {
+	for v := range x {
+		VMOVUPD(peak[v], l.at(in.from, markPeak, offset, v))
+		VMOVUPD(x[v], l.at(in.to, markX, offset, v))
+		VMOVUPD(y[v], l.at(in.to, markY, offset, v))
+	}
+}
+
+func (l level) marchFast(trace bool) {
+	in := l.open("Fast", trace)
+	l.passes(func(offset, pass int) {
+		ground, steps, rows := in.cursors()
+		y, z, peak := l.some(), l.some(), l.some()
+		for v := range y {
+			VMOVUPD(l.at(in.from, markX, offset, v), y[v])
+			VMOVUPD(l.at(in.from, markY, offset, v), z[v])
+			if !trace {
+				l.zero(peak[v])
+			}
+		}
+		yy := l.coefficient(in.q, fastYY, offset, l.keep)
+		yz := l.coefficient(in.q, fastYZ, offset, l.keep)
+		zy := l.coefficient(in.q, fastZY, offset, l.keep)
+		zz := l.coefficient(in.q, fastZZ, offset, l.keep)
+		jump := l.coefficient(in.q, fastJump, offset, false)
+		bend := l.vector()
+		in.loop(fmt.Sprintf("step%d", pass), ground, steps, rows, func() {
+			VBROADCASTSD(operand.Mem{Base: ground}, bend)
+			for v := range y {
+				t := l.vector()
+				VMULPD(z[v], z[v], t)
+				VFMADD231PD(y[v], y[v], t)
+				if trace {
+					VMOVUPD(y[v], l.at(rows, markX, offset, v))
+					VMOVUPD(z[v], l.at(rows, markY, offset, v))
+					VMOVUPD(t, l.at(rows, markPeak, offset, v))
+				} else {
+					VMAXPD(t, peak[v], peak[v])
+				}
+				s := l.vector()
+				VMULPD(jump[v], bend, s)
+				VFMSUB231PD(yz[v], z[v], s)
+				VMOVAPD(bend, t)
+				VFMADD231PD(zz[v], z[v], t)
+				VFMADD231PD(zy[v], y[v], t)
+				VFMADD132PD(yy[v], s, y[v])
+				VMOVAPD(t, z[v])
+			}
+			if trace {
+				ADDQ(operand.U32(2*row), rows) // and the loop one more
+			}
+		})
+		if !trace {
+			l.leave(in, offset, y, z, peak)
+		}
+	})
+	VZEROUPPER()
+	RET()
+}
+
+// screen compares rows that are stride bytes apart with a limit that falls with
+// two numbers of each.
+func (l level) screen(squared bool) {
+	name := "screen"
+	if squared {
+		name = "screenSquares"
+	}
+	TEXT(name+l.name, NOSPLIT, "func(s, values *float64, stride int, lines *float64, flags *uint32, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("%s%s is %sGeneric for vectors of %d lanes.", name, l.name, name, l.width))
+	s, values := Load(Param("s"), GP64()), Load(Param("values"), GP64())
+	stride, lines := Load(Param("stride"), GP64()), Load(Param("lines"), GP64())
+	flags, n := Load(Param("flags"), GP64()), Load(Param("n"), GP64())
+	mask := l.absolute()
+	zero := l.vector()
+	l.zero(zero)
+	first, second := l.vector(), l.vector()
+	bits, sum := GP32(), GP32()
+	input{}.loop("line", flags, n, nil, func() {
+		VBROADCASTSD(operand.Mem{Base: lines}, first)
+		VBROADCASTSD(operand.Mem{Base: lines, Disp: 8}, second)
+		XORL(sum, sum)
+		for v := lanes/l.width - 1; v >= 0; v-- {
+			r, x := l.vector(), l.vector()
+			VMOVUPD(l.at(s, 0, 0, v), r)
+			VFNMADD231PD(l.at(s, 1, 0, v), first, r)
+			VFNMADD231PD(l.at(s, 2, 0, v), second, r)
+			if squared {
+				VMAXPD(zero, r, r)
+				VMULPD(r, r, r)
+			}
+			l.and(l.at(values, 0, 0, v), mask, x)
+			SHLL(operand.U8(l.width), sum)
+			const greater = 14 // ordered, signalling
+			if l.width == 8 {
+				k := K()
+				VCMPPD(operand.U8(greater), r, x, k)
+				KMOVW(k, bits)
+			} else {
+				VCMPPD(operand.U8(greater), r, x, x)
+				VMOVMSKPD(x, bits)
+			}
+			ORL(bits, sum)
+		}
+		MOVL(sum, operand.Mem{Base: flags})
+		ADDQ(stride, values)
+		ADDQ(operand.Imm(16), lines)
+		SUBQ(operand.Imm(4), flags) // the loop moves on by 8
+	})
+	VZEROUPPER()
+	RET()
+}
+
+// greatest takes the maximum of rows that are stride bytes apart.
+func (l level) greatest() {
+	TEXT("greatest"+l.name, NOSPLIT, "func(top, values *float64, stride, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("greatest%s is greatestGeneric for vectors of %d lanes.", l.name, l.width))
+	top, values := Load(Param("top"), GP64()), Load(Param("values"), GP64())
+	stride, n := Load(Param("stride"), GP64()), Load(Param("n"), GP64())
+	sum := make([]reg.VecVirtual, lanes/l.width)
+	for v := range sum {
+		sum[v] = l.vector()
+		l.zero(sum[v])
+	}
+	Label("line")
+	for v := range sum {
+		VMAXPD(l.at(values, 0, 0, v), sum[v], sum[v])
+	}
+	ADDQ(stride, values)
+	DECQ(n)
+	JNZ(operand.LabelRef("line"))
+	for v := range sum {
+		VMOVUPD(sum[v], l.at(top, 0, 0, v))
+	}
+	VZEROUPPER()
+	RET()
+}

@@ -1,0 +1,66 @@
+package kernel
+
+import "fmt"
+
+// Names of the kernels, as Use takes them.
+const (
+	Portable = "portable" // Go alone, on every architecture
+	AVX2     = "avx2"     // AVX2 and FMA on amd64
+	AVX512   = "avx512"   // AVX-512F on amd64
+)
+
+// level is a kernel: its name and its functions.
+type level struct {
+	name          string
+	marchSlow     func(q *Slow, from, to *Mark, ground *float64, steps int)
+	traceSlow     func(q *Slow, from *Mark, ground *float64, steps int, rows *Row)
+	marchFast     func(q *Fast, from, to *Mark, ground *float64, steps int)
+	traceFast     func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark)
+	screen        func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
+	screenSquares func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
+	greatest      func(top *Row, values *float64, stride, n int)
+}
+
+var portable = level{
+	name:      Portable,
+	marchSlow: marchSlowGeneric, traceSlow: traceSlowGeneric,
+	marchFast: marchFastGeneric, traceFast: traceFastGeneric,
+	screen: screenGeneric, screenSquares: screenSquaresGeneric,
+	greatest: greatestGeneric,
+}
+
+// levels are the kernels that this processor runs, the fastest first.
+var levels = append(vectorLevels(), portable)
+
+var current = levels[0]
+
+// Name returns the name of the kernel in use.
+func Name() string { return current.name }
+
+// Names lists the kernels that this processor runs, the fastest first.
+func Names() []string {
+	names := make([]string, len(levels))
+	for i, l := range levels {
+		names[i] = l.name
+	}
+	return names
+}
+
+// Use chooses a kernel by name; "" is the fastest. It returns an error where
+// there is none of the name or this processor does not run it. The first one in
+// use is the fastest.
+//
+// Use is for a program's start and for tests: it must not run beside other
+// functions of the package.
+func Use(name string) error {
+	if name == "" {
+		name = levels[0].name
+	}
+	for _, l := range levels {
+		if l.name == name {
+			current = l
+			return nil
+		}
+	}
+	return fmt.Errorf("kernel %q is none of those that run here: %q", name, Names())
+}

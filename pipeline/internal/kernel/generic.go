@@ -1,0 +1,154 @@
+package kernel
+
+import (
+	"math"
+	"unsafe"
+)
+
+// The portable kernel takes four lanes side by side, because a single
+// recurrence waits for its own last result most of the time. Magnitudes are
+// compared as integers, without the sign bit, which leaves the floating-point
+// units to the recurrence.
+const side = 4
+
+func marchSlowGeneric(q *Slow, from, to *Mark, ground *float64, steps int) {
+	a := unsafe.Slice(ground, steps+2)
+	for l := 0; l < Lanes; l += side {
+		slowFour(q, from, to, a, l)
+	}
+}
+
+func slowFour(q *Slow, from, to *Mark, a []float64, l int) {
+	d, s := (*[side]float64)(q.Decay[l:]), (*[side]float64)(q.Stiffness[l:])
+	m, o := (*[side]float64)(q.Middle[l:]), (*[side]float64)(q.Oldest[l:])
+	u0, u1, u2, u3 := from.X[l], from.X[l+1], from.X[l+2], from.X[l+3]
+	w0, w1, w2, w3 := from.Y[l], from.Y[l+1], from.Y[l+2], from.Y[l+3]
+	p0, p1, p2, p3 := magnitude(u0), magnitude(u1), magnitude(u2), magnitude(u3)
+	x, y := a[0], a[1]
+	for _, z := range a[2:] {
+		w0 = math.FMA(-s[0], u0, math.FMA(w0, d[0], math.FMA(o[0], x, math.FMA(m[0], y, z))))
+		w1 = math.FMA(-s[1], u1, math.FMA(w1, d[1], math.FMA(o[1], x, math.FMA(m[1], y, z))))
+		w2 = math.FMA(-s[2], u2, math.FMA(w2, d[2], math.FMA(o[2], x, math.FMA(m[2], y, z))))
+		w3 = math.FMA(-s[3], u3, math.FMA(w3, d[3], math.FMA(o[3], x, math.FMA(m[3], y, z))))
+		x, y = y, z
+		u0 += w0
+		u1 += w1
+		u2 += w2
+		u3 += w3
+		p0, p1 = max(p0, magnitude(u0)), max(p1, magnitude(u1))
+		p2, p3 = max(p2, magnitude(u2)), max(p3, magnitude(u3))
+	}
+	to.X[l], to.X[l+1], to.X[l+2], to.X[l+3] = u0, u1, u2, u3
+	to.Y[l], to.Y[l+1], to.Y[l+2], to.Y[l+3] = w0, w1, w2, w3
+	from.Peak[l], from.Peak[l+1] = math.Float64frombits(p0>>1), math.Float64frombits(p1>>1)
+	from.Peak[l+2], from.Peak[l+3] = math.Float64frombits(p2>>1), math.Float64frombits(p3>>1)
+}
+
+// magnitude orders finite numbers by their absolute value.
+func magnitude(x float64) uint64 { return math.Float64bits(x) << 1 }
+
+func traceSlowGeneric(q *Slow, from *Mark, ground *float64, steps int, rows *Row) {
+	a, list := unsafe.Slice(ground, steps+2), unsafe.Slice(rows, steps)
+	for l := range Lanes {
+		d, s, m, o := q.Decay[l], -q.Stiffness[l], q.Middle[l], q.Oldest[l]
+		u, w := from.X[l], from.Y[l]
+		for i := range list {
+			w = math.FMA(s, u, math.FMA(w, d, math.FMA(o, a[i], math.FMA(m, a[i+1], a[i+2]))))
+			u += w
+			list[i][l] = u
+		}
+	}
+}
+
+func marchFastGeneric(q *Fast, from, to *Mark, bend *float64, steps int) {
+	b := unsafe.Slice(bend, steps)
+	for l := 0; l < Lanes; l += side {
+		fastFour(q, from, to, b, l)
+	}
+}
+
+func fastFour(q *Fast, from, to *Mark, bend []float64, l int) {
+	yy, yz := (*[side]float64)(q.YY[l:]), (*[side]float64)(q.YZ[l:])
+	zy, zz := (*[side]float64)(q.ZY[l:]), (*[side]float64)(q.ZZ[l:])
+	jump := (*[side]float64)(q.Jump[l:])
+	y0, y1, y2, y3 := from.X[l], from.X[l+1], from.X[l+2], from.X[l+3]
+	z0, z1, z2, z3 := from.Y[l], from.Y[l+1], from.Y[l+2], from.Y[l+3]
+	var p0, p1, p2, p3 uint64
+	for _, b := range bend {
+		p0 = max(p0, math.Float64bits(math.FMA(y0, y0, float64(z0*z0))))
+		p1 = max(p1, math.Float64bits(math.FMA(y1, y1, float64(z1*z1))))
+		p2 = max(p2, math.Float64bits(math.FMA(y2, y2, float64(z2*z2))))
+		p3 = max(p3, math.Float64bits(math.FMA(y3, y3, float64(z3*z3))))
+		y0, z0 = math.FMA(y0, yy[0], math.FMA(yz[0], z0, -float64(jump[0]*b))), math.FMA(zy[0], y0, math.FMA(zz[0], z0, b))
+		y1, z1 = math.FMA(y1, yy[1], math.FMA(yz[1], z1, -float64(jump[1]*b))), math.FMA(zy[1], y1, math.FMA(zz[1], z1, b))
+		y2, z2 = math.FMA(y2, yy[2], math.FMA(yz[2], z2, -float64(jump[2]*b))), math.FMA(zy[2], y2, math.FMA(zz[2], z2, b))
+		y3, z3 = math.FMA(y3, yy[3], math.FMA(yz[3], z3, -float64(jump[3]*b))), math.FMA(zy[3], y3, math.FMA(zz[3], z3, b))
+	}
+	to.X[l], to.X[l+1], to.X[l+2], to.X[l+3] = y0, y1, y2, y3
+	to.Y[l], to.Y[l+1], to.Y[l+2], to.Y[l+3] = z0, z1, z2, z3
+	from.Peak[l], from.Peak[l+1] = math.Float64frombits(p0), math.Float64frombits(p1)
+	from.Peak[l+2], from.Peak[l+3] = math.Float64frombits(p2), math.Float64frombits(p3)
+}
+
+func traceFastGeneric(q *Fast, from *Mark, bend *float64, steps int, rows *Mark) {
+	bends, list := unsafe.Slice(bend, steps), unsafe.Slice(rows, steps)
+	for l := range Lanes {
+		yy, yz, zy, zz, jump := q.YY[l], q.YZ[l], q.ZY[l], q.ZZ[l], q.Jump[l]
+		y, z := from.X[l], from.Y[l]
+		for i, b := range bends {
+			list[i].X[l], list[i].Y[l] = y, z
+			list[i].Peak[l] = math.FMA(y, y, float64(z*z))
+			y, z = math.FMA(y, yy, math.FMA(yz, z, -float64(jump*b))), math.FMA(zy, y, math.FMA(zz, z, b))
+		}
+	}
+}
+
+func screenGeneric(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int) {
+	list, out := unsafe.Slice(lines, n), unsafe.Slice(flags, n)
+	for i, line := range list {
+		row := (*Row)(unsafe.Add(unsafe.Pointer(values), i*stride))
+		sum := uint32(0)
+		for l := range row {
+			if math.Abs(row[l]) > s.at(line, l) {
+				sum |= 1 << l
+			}
+		}
+		out[i] = sum
+	}
+}
+
+func screenSquaresGeneric(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int) {
+	list, out := unsafe.Slice(lines, n), unsafe.Slice(flags, n)
+	for i, line := range list {
+		row := (*Row)(unsafe.Add(unsafe.Pointer(values), i*stride))
+		sum := uint32(0)
+		for l := range row {
+			r := s.at(line, l)
+			if !(r > 0) {
+				r = 0
+			}
+			if math.Abs(row[l]) > float64(r*r) {
+				sum |= 1 << l
+			}
+		}
+		out[i] = sum
+	}
+}
+
+// at returns the limit of lane l at a line.
+func (s *Screen) at(line Line, l int) float64 {
+	return math.FMA(-s.Second[l], line.Second, math.FMA(-s.First[l], line.First, s.Limit[l]))
+}
+
+func greatestGeneric(top *Row, values *float64, stride, n int) {
+	var sum Row
+	for i := range n {
+		row := (*Row)(unsafe.Add(unsafe.Pointer(values), i*stride))
+		for l, x := range row {
+			if x > sum[l] {
+				sum[l] = x
+			}
+		}
+	}
+	*top = sum
+}

@@ -1,0 +1,143 @@
+package kernel
+
+import "math"
+
+// Lanes is the number of oscillators of a block. It divides by the lanes in
+// flight of every kernel, and one bit for each fits into a uint32.
+const Lanes = 32
+
+// Row is one number for each oscillator.
+type Row [Lanes]float64
+
+// Slow holds the coefficients of the difference equation
+//
+//	w' = Decay·w + (a' + Middle·a + Oldest·a⁻) − Stiffness·u
+//	u' = u + w'
+//
+// with a⁻, a, a' successive samples of the ground.
+type Slow struct{ Decay, Stiffness, Middle, Oldest Row }
+
+// Fast holds the coefficients of the rotation
+//
+//	y' = YY·y + YZ·z − Jump·b
+//	z' = ZY·y + ZZ·z + b
+//
+// with b the ground's number of the step.
+type Fast struct{ YY, YZ, ZY, ZZ, Jump Row }
+
+// Mark is the state of a block of oscillators, (u, w) or (y, z), and the
+// greatest measure of a march that began with it.
+type Mark struct{ X, Y, Peak Row }
+
+// Line is a pair of numbers of one row of values, for a Screen.
+type Line struct{ First, Second float64 }
+
+// Screen holds for each lane the limit Limit − First·line.First −
+// Second·line.Second of a value.
+type Screen struct{ Limit, First, Second Row }
+
+// MarchSlow takes oscillators from the state from.X, from.Y at sample a[1]
+// through the samples a[2:], sets to.X and to.Y to the state at the last of them
+// and from.Peak to the greatest |u|, that of the start included. to may be
+// from.
+//
+// Without a third sample the state is copied. If states or ground are not
+// finite, states follow IEEE 754 and peaks are unspecified.
+func MarchSlow(q *Slow, from, to *Mark, a []float64) {
+	if len(a) < 3 {
+		from.Peak, to.X, to.Y = absolute(&from.X), from.X, from.Y
+		return
+	}
+	current.marchSlow(q, from, to, &a[0], len(a)-2)
+}
+
+// TraceSlow is MarchSlow that keeps every state: it sets rows[i] to u at sample
+// a[i+2]. It panics if len(rows) is not len(a) − 2.
+func TraceSlow(q *Slow, from *Mark, a []float64, rows []Row) {
+	if len(rows) != max(len(a)-2, 0) {
+		panic("kernel: number of rows is not the number of steps")
+	}
+	if len(rows) > 0 {
+		current.traceSlow(q, from, &a[0], len(rows), &rows[0])
+	}
+}
+
+// MarchFast takes oscillators from the state from.X, from.Y through steps with
+// the numbers bend, sets to.X and to.Y to the state after the last and from.Peak
+// to the greatest y² + z² at their starts, 0 for no steps. to may be from.
+//
+// If states or ground are not finite, states follow IEEE 754 and peaks are
+// unspecified.
+func MarchFast(q *Fast, from, to *Mark, bend []float64) {
+	if len(bend) == 0 {
+		from.Peak, to.X, to.Y = Row{}, from.X, from.Y
+		return
+	}
+	current.marchFast(q, from, to, &bend[0], len(bend))
+}
+
+// TraceFast is MarchFast that keeps every state: it sets rows[i] to the state at
+// the start of step i and the measure y² + z² there. It panics if len(rows) is
+// not len(bend).
+func TraceFast(q *Fast, from *Mark, bend []float64, rows []Mark) {
+	if len(rows) != len(bend) {
+		panic("kernel: number of rows is not the number of steps")
+	}
+	if len(rows) > 0 {
+		current.traceFast(q, from, &bend[0], len(rows), &rows[0])
+	}
+}
+
+// ScreenRows sets bit l of flags[i] where |rows[i][l]| exceeds the limit of lane
+// l at lines[i], and clears it elsewhere. It panics if lengths differ.
+func ScreenRows(s *Screen, rows []Row, lines []Line, flags []uint32) {
+	checkLines(len(rows), len(lines), len(flags))
+	if len(rows) > 0 {
+		current.screen(s, &rows[0][0], rowBytes, &lines[0], &flags[0], len(rows))
+	}
+}
+
+// ScreenPeaks is ScreenRows for the peaks of marks.
+func ScreenPeaks(s *Screen, marks []Mark, lines []Line, flags []uint32) {
+	checkLines(len(marks), len(lines), len(flags))
+	if len(marks) > 0 {
+		current.screen(s, &marks[0].Peak[0], markBytes, &lines[0], &flags[0], len(marks))
+	}
+}
+
+// ScreenSquares is ScreenPeaks for peaks that are squares, compared with the
+// square of the limit, or with 0 where the limit is negative.
+func ScreenSquares(s *Screen, marks []Mark, lines []Line, flags []uint32) {
+	checkLines(len(marks), len(lines), len(flags))
+	if len(marks) > 0 {
+		current.screenSquares(s, &marks[0].Peak[0], markBytes, &lines[0], &flags[0], len(marks))
+	}
+}
+
+// GreatestPeaks sets top to the greatest peak of each lane, 0 for no marks.
+// Peaks are not negative; of NaN the result is unspecified.
+func GreatestPeaks(top *Row, marks []Mark) {
+	if len(marks) == 0 {
+		*top = Row{}
+		return
+	}
+	current.greatest(top, &marks[0].Peak[0], markBytes, len(marks))
+}
+
+const (
+	rowBytes  = Lanes * 8
+	markBytes = 3 * rowBytes
+)
+
+func checkLines(values, lines, flags int) {
+	if lines != values || flags != values {
+		panic("kernel: numbers of values, lines and flags differ")
+	}
+}
+
+func absolute(x *Row) (y Row) {
+	for l := range y {
+		y[l] = math.Abs(x[l])
+	}
+	return y
+}

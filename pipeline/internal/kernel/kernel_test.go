@@ -1,0 +1,305 @@
+package kernel
+
+import (
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"testing"
+)
+
+// use switches to a kernel for the rest of a test.
+func use(t testing.TB, name string) {
+	t.Helper()
+	before := Name()
+	if err := Use(name); err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() {
+		if err := Use(before); err != nil {
+			t.Fatal(err)
+		}
+	})
+}
+
+// testCase is made-up data for every function. NaN stands on both sides of the
+// ground, so that a kernel that reads beyond it shows.
+type testCase struct {
+	slow   Slow
+	fast   Fast
+	start  Mark
+	screen Screen
+	ground []float64
+}
+
+// newCase makes oscillators of all kinds, damped and not, and noise of n
+// samples.
+func newCase(seed uint64, n int) *testCase {
+	r := rand.New(rand.NewPCG(seed, 3))
+	c := new(testCase)
+	for l := range Lanes {
+		phase := math.Exp(-6 * r.Float64())
+		damping := max(0, 0.3*r.Float64()-0.05)
+		c.slow.Decay[l], c.slow.Stiffness[l] = 1-2*damping*phase, phase*phase
+		c.slow.Middle[l], c.slow.Oldest[l] = 4-r.Float64(), 1-0.3*r.Float64()
+		decay, angle := math.Exp(-damping), 6*r.Float64()
+		c.fast.YY[l], c.fast.YZ[l] = decay*math.Cos(angle), decay*math.Sin(angle)
+		c.fast.ZY[l], c.fast.ZZ[l] = -decay*math.Sin(angle), decay*math.Cos(angle)
+		c.fast.Jump[l] = 2 * damping
+		c.start.X[l], c.start.Y[l] = r.NormFloat64(), r.NormFloat64()
+		c.screen.Limit[l], c.screen.First[l], c.screen.Second[l] = 2*r.Float64(), r.Float64(), r.Float64()
+	}
+	guarded := make([]float64, n+16)
+	for i := range guarded {
+		guarded[i] = math.NaN()
+	}
+	c.ground = guarded[8 : n+8 : n+8]
+	for i := range c.ground {
+		c.ground[i] = r.NormFloat64()
+	}
+	return c
+}
+
+// outcome is all that the functions of this package make of a case.
+type outcome struct {
+	slow, slowEnd, fast, fastEnd Mark
+	rows                         []Row
+	marks                        []Mark
+	flags                        []uint32
+	top                          Row
+}
+
+func (c *testCase) run() *outcome {
+	o := &outcome{slow: c.start, fast: c.start}
+	steps := max(len(c.ground)-2, 0)
+	// Guards round what the kernels write.
+	rows, marks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
+	lines, flags := make([]Line, len(c.ground)), make([]uint32, 2*len(c.ground)+steps+2)
+	for i := range flags {
+		flags[i] = 0xdeadbeef
+	}
+	for i := range lines {
+		lines[i] = Line{math.Abs(c.ground[i]), 0.1 * float64(i%7)}
+	}
+	MarchSlow(&c.slow, &o.slow, &o.slowEnd, c.ground)
+	MarchFast(&c.fast, &o.fast, &o.fastEnd, c.ground)
+	TraceSlow(&c.slow, &c.start, c.ground, rows[1:steps+1])
+	TraceFast(&c.fast, &c.start, c.ground, marks[1:len(c.ground)+1])
+	inner, n := marks[1:len(c.ground)+1], len(c.ground)
+	ScreenRows(&c.screen, rows[1:steps+1], lines[:steps], flags[1:1+steps])
+	ScreenPeaks(&c.screen, inner, lines, flags[1+steps:1+steps+n])
+	ScreenSquares(&c.screen, inner, lines, flags[1+steps+n:1+steps+2*n])
+	GreatestPeaks(&o.top, inner)
+	o.rows, o.marks, o.flags = rows, marks, flags
+	return o
+}
+
+func same(x, y float64) bool {
+	return math.Float64bits(x) == math.Float64bits(y) || math.IsNaN(x) && math.IsNaN(y)
+}
+
+// compare reports the first difference of bits. Peaks are left out where states
+// are not finite.
+func (o *outcome) compare(t *testing.T, label string, want *outcome) {
+	t.Helper()
+	finite := true
+	check := func(what string, got, want *Row) {
+		t.Helper()
+		for l := range got {
+			if !same(got[l], want[l]) {
+				t.Fatalf("%s: %s of lane %d = %v (%#x), want %v (%#x)", label, what, l,
+					got[l], math.Float64bits(got[l]), want[l], math.Float64bits(want[l]))
+			}
+			finite = finite && got[l]-got[l] == 0
+		}
+	}
+	for i := range want.rows {
+		check(fmt.Sprintf("slow trace %d", i-1), &o.rows[i], &want.rows[i])
+	}
+	check("slow end x", &o.slowEnd.X, &want.slowEnd.X)
+	check("slow end y", &o.slowEnd.Y, &want.slowEnd.Y)
+	for i := range want.marks {
+		check(fmt.Sprintf("fast trace x %d", i-1), &o.marks[i].X, &want.marks[i].X)
+		check(fmt.Sprintf("fast trace y %d", i-1), &o.marks[i].Y, &want.marks[i].Y)
+		check(fmt.Sprintf("fast trace square %d", i-1), &o.marks[i].Peak, &want.marks[i].Peak)
+	}
+	check("fast end x", &o.fastEnd.X, &want.fastEnd.X)
+	check("fast end y", &o.fastEnd.Y, &want.fastEnd.Y)
+	if finite {
+		check("slow peak", &o.slow.Peak, &want.slow.Peak)
+		check("fast peak", &o.fast.Peak, &want.fast.Peak)
+		check("greatest peak", &o.top, &want.top)
+	}
+	for i := range want.flags {
+		if o.flags[i] != want.flags[i] {
+			t.Fatalf("%s: flags %d = %#x, want %#x", label, i, o.flags[i], want.flags[i])
+		}
+	}
+}
+
+// everyKernel compares each kernel with the portable one, and the ground with a
+// copy made before.
+func everyKernel(t *testing.T, label string, c *testCase) {
+	t.Helper()
+	use(t, Portable)
+	want, before := c.run(), append([]float64{}, c.ground...)
+	for _, name := range Names() {
+		use(t, name)
+		c.run().compare(t, label+" "+name, want)
+	}
+	for i, a := range c.ground {
+		if !same(a, before[i]) {
+			t.Fatalf("%s: sample %d was changed from %v to %v", label, i, before[i], a)
+		}
+	}
+}
+
+// TestKernelsAgree holds every kernel to the bits of the portable one, for all
+// lengths about two blocks and all offsets within a vector.
+func TestKernelsAgree(t *testing.T) {
+	for n := range 131 {
+		c := newCase(uint64(n), n+8)
+		all := c.ground
+		for offset := range 8 {
+			c.ground = all[offset : offset+n]
+			everyKernel(t, fmt.Sprintf("n %d offset %d", n, offset), c)
+		}
+	}
+}
+
+// TestKernelsAgreeOnOddNumbers does so for zeros of both signs, subnormal, huge
+// and non-finite samples and states, and for a long motion.
+func TestKernelsAgreeOnOddNumbers(t *testing.T) {
+	odd := map[string][]float64{
+		"zeros":      {0, math.Copysign(0, -1)},
+		"subnormal":  {5e-324, -5e-324, 1e-310, -3e-320, 2.3e-308},
+		"underflow":  {1e-170, -3e-165, 1e-300, 7e-162},
+		"huge":       {1e300, -1e300, math.MaxFloat64, -math.MaxFloat64, 1e290},
+		"infinite":   {math.Inf(1), 1, 0, math.Inf(-1)},
+		"not number": {math.NaN(), 1, -2},
+		"mixed":      {1, -1e-300, 1e300, 0, 5e-324, -1e18},
+	}
+	for name, values := range odd {
+		for _, states := range []bool{false, true} {
+			c := newCase(5, 70)
+			for i := range c.ground {
+				c.ground[i] = values[(i*i+i/3)%len(values)]
+			}
+			if states {
+				for l := range Lanes {
+					c.start.X[l], c.start.Y[l] = values[l%len(values)], values[(l/2)%len(values)]
+				}
+			}
+			everyKernel(t, fmt.Sprintf("%s, in states %v", name, states), c)
+		}
+	}
+	everyKernel(t, "long", newCase(6, 20000))
+}
+
+// TestMarchIsItsDefinition checks the portable kernel against the equations of
+// Slow and Fast written out lane by lane with rounding after every operation.
+func TestMarchIsItsDefinition(t *testing.T) {
+	use(t, Portable)
+	c := newCase(7, 40)
+	o := c.run()
+	near := func(what string, l int, got, want float64) {
+		t.Helper()
+		if math.Abs(got-want) > 1e-11*max(1, math.Abs(want)) {
+			t.Fatalf("%s of lane %d = %v, want %v", what, l, got, want)
+		}
+	}
+	for l := range Lanes {
+		q := &c.slow
+		u, w, peak := c.start.X[l], c.start.Y[l], math.Abs(c.start.X[l])
+		for i, a := range c.ground[2:] {
+			w = q.Decay[l]*w + (a + q.Middle[l]*c.ground[i+1] + q.Oldest[l]*c.ground[i]) - q.Stiffness[l]*u
+			u += w
+			peak = max(peak, math.Abs(u))
+			near("slow trace", l, o.rows[i+1][l], u)
+		}
+		near("slow u", l, o.slowEnd.X[l], u)
+		near("slow w", l, o.slowEnd.Y[l], w)
+		near("slow peak", l, o.slow.Peak[l], peak)
+		f := &c.fast
+		y, z, top := c.start.X[l], c.start.Y[l], 0.0
+		for i, b := range c.ground {
+			top = max(top, y*y+z*z)
+			near("fast trace y", l, o.marks[i+1].X[l], y)
+			near("fast trace z", l, o.marks[i+1].Y[l], z)
+			y, z = f.YY[l]*y+f.YZ[l]*z-f.Jump[l]*b, f.ZY[l]*y+f.ZZ[l]*z+b
+		}
+		near("fast y", l, o.fastEnd.X[l], y)
+		near("fast z", l, o.fastEnd.Y[l], z)
+		near("fast peak", l, o.fast.Peak[l], top)
+		near("greatest peak", l, o.top[l], top)
+	}
+}
+
+// TestScreens checks the portable kernel's flags against the comparison they
+// stand for.
+func TestScreens(t *testing.T) {
+	use(t, Portable)
+	c := newCase(8, 50)
+	marks, lines := make([]Mark, 50), make([]Line, 50)
+	TraceFast(&c.fast, &c.start, c.ground, marks)
+	peaks, squares := make([]uint32, 50), make([]uint32, 50)
+	for i := range lines {
+		lines[i] = Line{0.1 * float64(i%5), 0.2 * float64(i%3)}
+	}
+	ScreenPeaks(&c.screen, marks, lines, peaks)
+	ScreenSquares(&c.screen, marks, lines, squares)
+	count := [2]int{}
+	for i, m := range marks {
+		for l := range Lanes {
+			limit := c.screen.Limit[l] - c.screen.First[l]*lines[i].First - c.screen.Second[l]*lines[i].Second
+			above := [2]bool{m.Peak[l] > limit, m.Peak[l] > 0 && math.Sqrt(m.Peak[l]) > limit}
+			for j, got := range [2]bool{peaks[i]>>l&1 == 1, squares[i]>>l&1 == 1} {
+				if got != above[j] {
+					t.Fatalf("screen %d, row %d lane %d: flag %v, value %v, limit %v", j, i, l, got, m.Peak[l], limit)
+				}
+				if got {
+					count[j]++
+				}
+			}
+		}
+	}
+	for j, n := range count {
+		if n == 0 || n == 50*Lanes {
+			t.Errorf("screen %d: %d flags of %d, so that the test shows nothing", j, n, 50*Lanes)
+		}
+	}
+}
+
+// TestUse chooses every kernel and refuses what is none.
+func TestUse(t *testing.T) {
+	use(t, "")
+	if Name() != Names()[0] {
+		t.Errorf("the kernel by default is %q, want %q", Name(), Names()[0])
+	}
+	for _, name := range Names() {
+		use(t, name)
+		if Name() != name {
+			t.Errorf("Use(%q) chose %q", name, Name())
+		}
+	}
+	before := Name()
+	if err := Use("nonesuch"); err == nil || Name() != before {
+		t.Errorf("Use of an unknown name: error %v, kernel %q, before it %q", err, Name(), before)
+	}
+	if names := Names(); names[len(names)-1] != Portable {
+		t.Errorf("kernels %q do not end with the portable one", names)
+	}
+}
+
+// FuzzKernels compares all kernels on any bytes.
+func FuzzKernels(f *testing.F) {
+	f.Add(uint64(1), []byte{1, 2, 3, 250, 0, 0, 7}, 0)
+	f.Add(uint64(2), []byte{}, 900)
+	f.Add(uint64(3), []byte{255, 128, 0, 1}, -1070)
+	f.Fuzz(func(t *testing.T, seed uint64, data []byte, exponent int) {
+		c := newCase(seed, min(len(data), 150))
+		for i := range c.ground {
+			c.ground[i] = math.Ldexp(float64(int8(data[i])), exponent)
+		}
+		everyKernel(t, fmt.Sprintf("seed %d", seed), c)
+	})
+}
