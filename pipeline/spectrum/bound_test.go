@@ -4,6 +4,8 @@ import (
 	"math"
 	"math/rand/v2"
 	"testing"
+
+	"swaybook/pipeline/internal/kernel"
 )
 
 // TestBlockBounds searches every block to the end and finds no |u| beyond the
@@ -45,22 +47,37 @@ func TestBlockBounds(t *testing.T) {
 }
 
 func slowExcess(m *motion, o *slow) (worst float64) {
-	m.solveSlow(o)
-	for b := range m.peak {
-		k := m.marks[b*lanes]
-		bound := o.bound(math.Abs(o.eq.scale)*max(math.Abs(k.start.x), k.peak), m.peak[b], 0)
-		worst = max(worst, share(o.search(0, m, b, k.start), bound))
+	g := newSlowGroups([]slow{*o})[0]
+	g.march(m)
+	for b := range m.blocks() {
+		bound := o.bound(math.Abs(o.eq.scale)*m.marks[b].Peak[0], m.blockLines[b].First, 0)
+		a := m.slowSamples(b)
+		rows := m.rows[:len(a)-1]
+		rows[0] = m.marks[b].X
+		kernel.TraceSlow(g.eq, &m.marks[b], a, rows[1:])
+		for k := range len(rows) - 1 {
+			u, end := o.eq.scale*rows[k][0], o.eq.scale*rows[k+1][0]
+			top, _, _ := o.series.peak(0, u, o.velocity(u, end-u, a[k+1], a[k+2]), a[k+1], a[k+2]-a[k+1])
+			worst = max(worst, share(top, bound))
+		}
 	}
 	return worst
 }
 
 func fastExcess(m *motion, o *fast) (worst float64) {
-	m.solveFast(o)
-	for b := range m.peak {
-		k := m.marks[b*lanes]
-		bound := o.bound(o.line(m, b), k.peak)
-		// All steps of a block are followed when best is below every bound.
-		worst = max(worst, share(o.search(-1, m, b, k.start), bound))
+	g := newFastGroups([]fast{*o})[0]
+	g.march(m)
+	for b := range m.blocks() {
+		line := o.phase*m.blockLines[b].First + o.turn.jump*m.blockLines[b].Second
+		bound := o.bound(line, m.marks[b].Peak[0])
+		from, to := m.block(b)
+		states := m.states[:to-from]
+		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states)
+		for k := range states {
+			// Every step is followed when best is below its bound.
+			s := state{states[k].X[0], states[k].Y[0]}
+			worst = max(worst, share(o.step(-1, s, states[k].Peak[0], m.a[from+k], m.a[from+k+1]), bound))
+		}
 	}
 	return worst
 }

@@ -16,21 +16,22 @@
 // V = ω·D and A = ω²·D are the pseudo-velocity and the pseudo-acceleration.
 //
 // Promises. Numbers are SI; damping is a fraction. The result for an oscillator
-// does not depend on which others are solved with it. Only + − × ÷ √ and a
-// fused multiply-add in the setting up are used, none left open to fusing, so
-// every architecture computes the same bits. A Solver is immutable and safe for
+// does not depend on which others are solved with it. Only + − × ÷ √ and fused
+// multiply-adds that are asked for are used, none left open to fusing, so every
+// architecture and every kernel computes the same bits. A Solver is immutable and safe for
 // concurrent use. No allocation is made per sample.
 //
-// How it works. Time is counted in sampling steps and acceleration in a power
+// How it works. Oscillators march in the lanes of vectors (package kernel). Time is counted in sampling steps and acceleration in a power
 // of two near its peak, so that no coefficient depends on units. An oscillator
 // whose period is long against the step marches as a second-order difference
 // equation (type slow), one whose period is short as the free vibration left
 // over when the straight-line particular solution of each step is taken away
 // (type fast). Both keep, per block of steps, the starting state and one
 // maximum, from which a bound on |u| within the block follows. Blocks whose
-// bound exceeds the best |u| known are marched again, and in their steps the
-// turning points are found on the Taylor series of u (type series), which
-// converges to rounding error within a few terms.
+// bound exceeds the best |u| known are marched again with every state kept. In
+// the steps whose own bound exceeds it the turning points are found on the
+// Taylor series of u (type series), which converges to rounding error within a
+// few terms.
 //
 // Start at NewSolver and Solver.SD; Grid is the list of oscillators that a
 // database is built on; Peaks gives the limits of D and A at long and short
@@ -47,4 +48,4 @@ package spectrum
 
 // Version names the arithmetic of this package. It is stored with results and
 // changes whenever the bits of a result may change.
-const Version = "1"
+const Version = "2"

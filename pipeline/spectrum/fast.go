@@ -19,6 +19,7 @@ type fast struct {
 	phase   float64
 	turn    turn
 	cube    float64 // φ³
+	curve   float64 // (1 + 2ζ)·φ²
 	cuts    int     // pieces that a step is cut into for series
 	series  series  // of one piece
 	ringing ringing
@@ -45,44 +46,10 @@ func newFast(index int, phase, damping float64) fast {
 			jump: 2 * damping,
 		},
 		cube:    float64(phase*phase) * phase,
+		curve:   (1 + float64(2*damping)) * float64(phase*phase),
 		cuts:    cuts,
 		series:  newSeries(phase/float64(cuts), damping),
 		ringing: newRinging(damping),
-	}
-}
-
-// marchFast takes one oscillator through steps with the given changes of slope
-// at their ends, and returns the greatest y² + z² at their starts.
-func marchFast(q *turn, s *state, bend []float64) float64 {
-	yy, yz, zy, zz, jump := q.yy, q.yz, q.zy, q.zz, q.jump
-	y, z := s.x, s.y
-	var peak uint64
-	for _, b := range bend {
-		peak = max(peak, math.Float64bits(float64(y*y)+float64(z*z)))
-		y, z = (float64(yy*y)+float64(yz*z))-float64(jump*b), (float64(zy*y)+float64(zz*z))+b
-	}
-	s.x, s.y = y, z
-	return math.Float64frombits(peak)
-}
-
-// marchFastLanes is marchFast for four oscillators, the same operations each.
-func marchFastLanes(q *[lanes]turn, s *[lanes]state, bend []float64, peaks *[lanes]float64) {
-	y0, y1, y2, y3 := s[0].x, s[1].x, s[2].x, s[3].x
-	z0, z1, z2, z3 := s[0].y, s[1].y, s[2].y, s[3].y
-	var p0, p1, p2, p3 uint64
-	for _, b := range bend {
-		p0 = max(p0, math.Float64bits(float64(y0*y0)+float64(z0*z0)))
-		p1 = max(p1, math.Float64bits(float64(y1*y1)+float64(z1*z1)))
-		p2 = max(p2, math.Float64bits(float64(y2*y2)+float64(z2*z2)))
-		p3 = max(p3, math.Float64bits(float64(y3*y3)+float64(z3*z3)))
-		y0, z0 = (float64(q[0].yy*y0)+float64(q[0].yz*z0))-float64(q[0].jump*b), (float64(q[0].zy*y0)+float64(q[0].zz*z0))+b
-		y1, z1 = (float64(q[1].yy*y1)+float64(q[1].yz*z1))-float64(q[1].jump*b), (float64(q[1].zy*y1)+float64(q[1].zz*z1))+b
-		y2, z2 = (float64(q[2].yy*y2)+float64(q[2].yz*z2))-float64(q[2].jump*b), (float64(q[2].zy*y2)+float64(q[2].zz*z2))+b
-		y3, z3 = (float64(q[3].yy*y3)+float64(q[3].yz*z3))-float64(q[3].jump*b), (float64(q[3].zy*y3)+float64(q[3].zz*z3))+b
-	}
-	s[0], s[1], s[2], s[3] = state{y0, z0}, state{y1, z1}, state{y2, z2}, state{y3, z3}
-	for i, p := range [lanes]uint64{p0, p1, p2, p3} {
-		peaks[i] = math.Float64frombits(p)
 	}
 }
 
@@ -90,63 +57,6 @@ func marchFastLanes(q *[lanes]turn, s *[lanes]state, bend []float64, peaks *[lan
 func (o *fast) first(m *motion) state {
 	slope := m.a[1] - m.a[0]
 	return state{float64(o.phase*m.a[0]) - float64(o.turn.jump*slope), slope}
-}
-
-// solveFast marches one oscillator and returns its D in units of the motion.
-func (m *motion) solveFast(o *fast) float64 {
-	s := o.first(m)
-	for b := range m.peak {
-		from, to := m.block(b)
-		k := &m.marks[b*lanes]
-		k.start = s
-		k.peak = marchFast(&o.turn, &s, m.bend[from:to])
-	}
-	return o.settle(m, 0, s)
-}
-
-// solveFastLanes does it for four, and puts their D into d.
-func (m *motion) solveFastLanes(o []fast, d *[lanes]float64) {
-	var q [lanes]turn
-	var s [lanes]state
-	for i := range q {
-		q[i], s[i] = o[i].turn, o[i].first(m)
-	}
-	var peaks [lanes]float64
-	for b := range m.peak {
-		from, to := m.block(b)
-		k := m.marks[b*lanes : (b+1)*lanes]
-		for i := range k {
-			k[i].start = s[i]
-		}
-		marchFastLanes(&q, &s, m.bend[from:to], &peaks)
-		for i := range k {
-			k[i].peak = peaks[i]
-		}
-	}
-	for i := range d {
-		d[i] = o[i].settle(m, i, s[i])
-	}
-}
-
-// settle returns D from the marks of a lane and the state at the last sample,
-// which is relative to the line of the last step, carried on.
-func (o *fast) settle(m *motion, lane int, end state) float64 {
-	best := m.refine(0,
-		func(b int) float64 {
-			return o.bound(o.line(m, b), m.marks[b*lanes+lane].peak)
-		},
-		func(best float64, b int) float64 {
-			return o.search(best, m, b, m.marks[b*lanes+lane].start)
-		})
-	n := m.steps()
-	slope := m.a[n] - m.a[n-1]
-	u := o.displacement(end, m.a[n], slope)
-	return o.ringing.peak(best, u, o.velocity(end, slope)/o.phase)
-}
-
-// line returns a bound on |φ³p| in the steps of a block.
-func (o *fast) line(m *motion, b int) float64 {
-	return float64(o.phase*m.peak[b]) + float64(o.turn.jump*m.slope[b])
 }
 
 // bound returns a bound on |u| in steps in which |φ³p| <= line and y² + z² is at
@@ -164,21 +74,40 @@ func (o *fast) velocity(s state, slope float64) float64 {
 	return (s.y - slope) / float64(o.phase*o.phase)
 }
 
-// search marches a block again and looks into the steps that can beat best.
-func (o *fast) search(best float64, m *motion, b int, s state) float64 {
-	from, to := m.block(b)
-	for k := from; k < to; k++ {
-		a, next := m.a[k], m.a[k+1]
-		slope := next - a
-		shift := float64(o.turn.jump * slope)
-		line := max(math.Abs(shift-float64(o.phase*a)), math.Abs(shift-float64(o.phase*next)))
-		start := s
-		square := marchFast(&o.turn, &s, m.bend[k:k+1])
-		if o.bound(line, square) > best {
-			best = o.follow(best, o.displacement(start, a, slope), o.velocity(start, slope), a, slope)
-		}
+// step returns the greater of best and the greatest |u| of the step from sample
+// a to next, from the free vibration s with the measure square = y² + z².
+//
+// It looks into the step only if a bound on |u| exceeds best. The straight line
+// is within its ends. y is within its ends too unless z changes sign, and then
+// goes to one side only, up to √square, if the phase is less than π; else to
+// both. The other bound is that of func (slow) step, with |ü| <= (1 + 2ζ)·φ²·√square in units
+// of y.
+func (o *fast) step(best float64, s state, square, a, next float64) float64 {
+	slope := next - a
+	shift := float64(o.turn.jump * slope)
+	p, pEnd := shift-float64(o.phase*a), shift-float64(o.phase*next)
+	y := float64(o.turn.yy*s.x) + float64(o.turn.yz*s.y)
+	z := float64(o.turn.zy*s.x) + float64(o.turn.zz*s.y)
+	least, most, size := min(s.x, y), max(s.x, y), math.Sqrt(square)
+	switch {
+	case o.phase >= math.Pi:
+		least, most = -size, size
+	case s.y > 0 && z <= 0:
+		most = size
+	case s.y < 0 && z >= 0:
+		least = -size
 	}
-	return best
+	limit := float64(best * o.cube)
+	if max(max(p, pEnd)+most, -(min(p, pEnd)+least)) <= limit {
+		return best
+	}
+	u, end := p+s.x, pEnd+y
+	curve := float64(o.curve * size)
+	part := max(0, 0.5-math.Abs(end-u)/curve)
+	if max(math.Abs(u), math.Abs(end))+float64(float64(curve*0.5)*float64(part*part)) <= limit {
+		return best
+	}
+	return o.follow(best, o.displacement(s, a, slope), o.velocity(s, slope), a, slope)
 }
 
 // follow takes one step in pieces short enough for their series.

@@ -1,26 +1,18 @@
 package spectrum
 
-import "math"
+import (
+	"math"
+
+	"swaybook/pipeline/internal/kernel"
+)
 
 // blockSteps is the number of steps between the states that a march keeps.
-// Shorter blocks are bounded more closely but cost more to keep: of 24, 32, 48
-// and 64 the last was fastest on the default grid (BenchmarkSD).
+// Shorter blocks are bounded more closely but cost more to keep: of 32, 64 and
+// 128 the second was fastest on the default grid (BenchmarkSD).
 const blockSteps = 64
 
-// lanes is the number of oscillators marched side by side: a single recurrence
-// waits for its own last result most of the time. Four keep the adders busy and
-// still fit their states into sixteen registers.
-const lanes = 4
-
-// state is the pair of numbers that a march carries per oscillator.
-type state struct{ x, y float64 }
-
-// mark is what a march keeps of one oscillator and block: the state at its
-// start and the greatest measure within it.
-type mark struct {
-	start state
-	peak  float64
-}
+// lanes is the number of oscillators marched side by side.
+const lanes = kernel.Lanes
 
 // motion is a component made ready for marching, with the work space of one
 // call. Acceleration is divided by a power of two that brings its peak into
@@ -29,9 +21,25 @@ type motion struct {
 	exponent int
 	a        []float64 // samples
 	bend     []float64 // change of slope at the end of each step; 0 for the last
-	peak     []float64 // greatest |a| of each block of steps, both ends included
-	slope    []float64 // greatest |a' − a| over a step of each block
-	marks    []mark    // blocks × lanes
+	// What bounds on |u| are made of: of each block of steps and each step the
+	// greatest |a|, ends included, and the greatest |a' − a|; of each sample the
+	// greatest |a| of the steps that meet there.
+	blockLines, stepLines, sampleLines []kernel.Line
+	search
+}
+
+// search is the work space of one block of oscillators.
+type search struct {
+	marks    []kernel.Mark // of each block of steps, and the state at the end
+	flags    []uint32      // of each block of steps: the lanes that it may hold the maximum of
+	done     []uint32      // of each block of steps: the lanes that it was searched for
+	rows     [blockSteps + 1]kernel.Row
+	states   [blockSteps]kernel.Mark
+	rowFlags [blockSteps + 1]uint32
+	seen     [blockSteps]uint32 // of each step of a block: the lanes that it is done with
+	screen   kernel.Screen
+	top      kernel.Row // the greatest peak of each lane
+	best     [lanes]float64
 }
 
 // load prepares the samples. It returns the D that every oscillator has without
@@ -66,24 +74,34 @@ func (m *motion) scale(samples []float64, top float64) {
 }
 
 func (m *motion) measure() {
-	steps := m.steps()
+	steps, blocks := m.steps(), m.blocks()
 	m.bend = resize(m.bend, steps)
-	m.peak = resize(m.peak, m.blocks())
-	m.slope = resize(m.slope, m.blocks())
-	m.marks = resize(m.marks, m.blocks()*lanes)
-	for b := range m.peak {
+	m.stepLines = resize(m.stepLines, steps)
+	m.sampleLines = resize(m.sampleLines, steps+1)
+	m.blockLines = resize(m.blockLines, blocks)
+	m.marks = resize(m.marks, blocks+1)
+	m.flags, m.done = resize(m.flags, blocks), resize(m.done, blocks)
+	for b := range m.blockLines {
 		from, to := m.block(b)
-		peak, slope := math.Abs(m.a[from]), 0.0
+		var block kernel.Line
 		for k := from; k < to; k++ {
 			d := m.a[k+1] - m.a[k]
 			m.bend[k] = 0
 			if k+1 < steps {
 				m.bend[k] = (m.a[k+2] - m.a[k+1]) - d
 			}
-			peak, slope = max(peak, math.Abs(m.a[k+1])), max(slope, math.Abs(d))
+			step := kernel.Line{First: max(math.Abs(m.a[k]), math.Abs(m.a[k+1])), Second: math.Abs(d)}
+			m.stepLines[k] = step
+			block.First, block.Second = max(block.First, step.First), max(block.Second, step.Second)
 		}
-		m.peak[b], m.slope[b] = peak, slope
+		m.blockLines[b] = block
 	}
+	last := 0.0
+	for k, step := range m.stepLines {
+		m.sampleLines[k] = kernel.Line{First: max(last, step.First)}
+		last = step.First
+	}
+	m.sampleLines[steps] = kernel.Line{First: last}
 }
 
 // steps is the number of intervals between samples.
@@ -95,27 +113,6 @@ func (m *motion) blocks() int { return (m.steps() + blockSteps - 1) / blockSteps
 // from sample k to sample k+1.
 func (m *motion) block(b int) (from, to int) {
 	return b * blockSteps, min((b+1)*blockSteps, m.steps())
-}
-
-// refine looks for the greatest |u| in the blocks whose bound exceeds best,
-// beginning with the one of greatest bound, which usually settles the others.
-func (m *motion) refine(best float64, bound func(b int) float64, search func(best float64, b int) float64) float64 {
-	first, top := 0, math.Inf(-1)
-	for b := range m.peak {
-		if v := bound(b); v > top {
-			first, top = b, v
-		}
-	}
-	if !(top > best) {
-		return best
-	}
-	best = search(best, first)
-	for b := range m.peak {
-		if b != first && bound(b) > best {
-			best = search(best, b)
-		}
-	}
-	return best
 }
 
 // resize returns a slice of length n, in the space of x if that is enough. Its

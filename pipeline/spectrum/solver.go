@@ -25,8 +25,8 @@ type Solver struct {
 	method      Method
 	stepS       float64
 	oscillators int
-	slow        []slow
-	fast        []fast
+	slow        []slowGroup
+	fast        []fastGroup
 	scratch     *sync.Pool // of *motion
 }
 
@@ -48,15 +48,23 @@ func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver,
 		method: method, stepS: stepS, oscillators: len(oscillators),
 		scratch: &sync.Pool{New: func() any { return new(motion) }},
 	}
+	var list forms
 	for i, o := range oscillators {
-		if err := s.add(i, o); err != nil {
+		if err := s.add(&list, i, o); err != nil {
 			return nil, fmt.Errorf("oscillator %d: %w", i+1, err)
 		}
 	}
+	s.slow, s.fast = newSlowGroups(list.slow), newFastGroups(list.fast)
 	return s, nil
 }
 
-func (s *Solver) add(index int, o Oscillator) error {
+// forms are oscillators sorted by the way they march.
+type forms struct {
+	slow []slow
+	fast []fast
+}
+
+func (s *Solver) add(list *forms, index int, o Oscillator) error {
 	if err := o.Validate(); err != nil {
 		return err
 	}
@@ -70,11 +78,11 @@ func (s *Solver) add(index int, o Oscillator) error {
 	}
 	phase := float64(Omega(o.PeriodS) * s.stepS)
 	if s.method == NewmarkAverage {
-		s.slow = append(s.slow, newNewmark(index, phase, o.Damping))
+		list.slow = append(list.slow, newNewmark(index, phase, o.Damping))
 	} else if one, ok := newSlow(index, phase, o.Damping); ok {
-		s.slow = append(s.slow, one)
+		list.slow = append(list.slow, one)
 	} else {
-		s.fast = append(s.fast, newFast(index, phase, o.Damping))
+		list.fast = append(list.fast, newFast(index, phase, o.Damping))
 	}
 	return nil
 }
@@ -118,38 +126,14 @@ func (s *Solver) SD(dst, acceleration []float64) []float64 {
 		}
 		return dst
 	}
-	s.solveSlow(dst, m)
-	s.solveFast(dst, m)
+	for i := range s.slow {
+		s.slow[i].solve(dst, m)
+	}
+	for i := range s.fast {
+		s.fast[i].solve(dst, m)
+	}
 	for i, d := range dst {
 		dst[i] = math.Ldexp(d*s.stepS*s.stepS, m.exponent)
 	}
 	return dst
-}
-
-func (s *Solver) solveSlow(dst []float64, m *motion) {
-	list := s.slow
-	var d [lanes]float64
-	for ; len(list) >= lanes; list = list[lanes:] {
-		m.solveSlowLanes(list[:lanes], &d)
-		for i := range d {
-			dst[list[i].index] = d[i]
-		}
-	}
-	for i := range list {
-		dst[list[i].index] = m.solveSlow(&list[i])
-	}
-}
-
-func (s *Solver) solveFast(dst []float64, m *motion) {
-	list := s.fast
-	var d [lanes]float64
-	for ; len(list) >= lanes; list = list[lanes:] {
-		m.solveFastLanes(list[:lanes], &d)
-		for i := range d {
-			dst[list[i].index] = d[i]
-		}
-	}
-	for i := range list {
-		dst[list[i].index] = m.solveFast(&list[i])
-	}
 }

@@ -5,6 +5,8 @@ import (
 	"math/rand/v2"
 	"sync"
 	"testing"
+
+	"swaybook/pipeline/internal/kernel"
 )
 
 // seededMotion returns made-up noise of n samples with spikes and quiet parts,
@@ -136,15 +138,18 @@ func TestSamplesMissPeaks(t *testing.T) {
 func mustSlow(ratio float64) slow {
 	phase := Omega(ratio)
 	r := respond(phase, 0)
-	return slow{phase: phase, step: r.recurrence(), eq: r.difference()}
+	return slow{phase: phase, exact: r.recurrence(), eq: r.difference()}
 }
 
 // sampledPeak marches on samples, through 40 more of free ringing.
 func sampledPeak(o *slow, m *motion) float64 {
 	quiet := append(append([]float64{}, m.a...), make([]float64, 40)...)
-	s := o.first(m)
-	peak := max(math.Abs(s.x), marchSlow(&o.eq, &s, quiet))
-	return math.Ldexp(peak*math.Abs(o.eq.scale), m.exponent)
+	g := newSlowGroups([]slow{*o})[0]
+	var s kernel.Mark
+	s.X[0] = o.first(m).x
+	s.Y[0] = s.X[0]
+	kernel.MarchSlow(g.eq, &s, &s, quiet)
+	return math.Ldexp(s.Peak[0]*math.Abs(o.eq.scale), m.exponent)
 }
 
 func TestScaleAndSign(t *testing.T) {

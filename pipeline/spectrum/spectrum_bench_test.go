@@ -5,6 +5,8 @@ import (
 	"math/rand/v2"
 	"strconv"
 	"testing"
+
+	"swaybook/pipeline/internal/kernel"
 )
 
 // shaken returns a made-up motion: noise under an envelope that rises and
@@ -21,6 +23,20 @@ func shaken(seed uint64, n int) []float64 {
 	return a
 }
 
+// useKernel switches to a kernel for the rest of a test.
+func useKernel(t testing.TB, name string) {
+	t.Helper()
+	before := Kernel()
+	if err := UseKernel(name); err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() {
+		if err := UseKernel(before); err != nil {
+			t.Fatal(err)
+		}
+	})
+}
+
 func perOscillatorStep(b *testing.B, oscillators, samples int) {
 	steps := float64(oscillators) * float64(samples) * float64(b.N)
 	b.ReportMetric(steps/b.Elapsed().Seconds(), "osc-steps/s")
@@ -31,52 +47,53 @@ func BenchmarkSD(b *testing.B) {
 	const n = 8000
 	a := shaken(1, n)
 	for _, step := range []float64{0.005, 0.01, 0.02} {
-		for _, method := range []Method{NigamJennings, NewmarkAverage} {
-			b.Run(method.String()+"/dt="+strconv.FormatFloat(step, 'g', -1, 64), func(b *testing.B) {
-				s, err := NewSolver(method, step, DefaultGrid().Oscillators())
-				if err != nil {
-					b.Fatal(err)
-				}
-				d := make([]float64, s.Len())
-				b.ReportAllocs()
-				for b.Loop() {
-					s.SD(d, a)
-				}
-				perOscillatorStep(b, s.Len(), n)
-			})
-		}
+		benchmarkSD(b, NigamJennings, step, a)
+	}
+	benchmarkSD(b, NewmarkAverage, 0.005, a)
+}
+
+func benchmarkSD(b *testing.B, method Method, step float64, a []float64) {
+	for _, name := range kernel.Names() {
+		b.Run(method.String()+"/dt="+strconv.FormatFloat(step, 'g', -1, 64)+"/"+name, func(b *testing.B) {
+			useKernel(b, name)
+			s, err := NewSolver(method, step, DefaultGrid().Oscillators())
+			if err != nil {
+				b.Fatal(err)
+			}
+			d := make([]float64, s.Len())
+			b.ReportAllocs()
+			for b.Loop() {
+				s.SD(d, a)
+			}
+			perOscillatorStep(b, s.Len(), len(a))
+		})
 	}
 }
 
-// BenchmarkMarch is the marching alone, one oscillator at a time beside four.
+// BenchmarkMarch is the marching alone of the oscillators of the default grid,
+// without the search for maxima.
 func BenchmarkMarch(b *testing.B) {
 	const n = 8000
-	var m motion
-	m.load(shaken(1, n))
-	var q [lanes]difference
-	var r [lanes]turn
-	for i := range lanes {
-		o, _ := newSlow(0, 0.05*float64(i+1), 0.05)
-		q[i] = o.eq
-		r[i] = newFast(0, 1.5*float64(i+1), 0.05).turn
-	}
-	var s [lanes]state
-	var peaks [lanes]float64
-	run := func(name string, oscillators int, block func(from, to int)) {
+	for _, name := range kernel.Names() {
 		b.Run(name, func(b *testing.B) {
+			useKernel(b, name)
+			s, err := NewSolver(NigamJennings, 0.005, DefaultGrid().Oscillators())
+			if err != nil {
+				b.Fatal(err)
+			}
+			var m motion
+			m.load(shaken(1, n))
 			for b.Loop() {
-				s = [lanes]state{}
-				for i := range m.peak {
-					block(m.block(i))
+				for i := range s.slow {
+					s.slow[i].march(&m)
+				}
+				for i := range s.fast {
+					s.fast[i].march(&m)
 				}
 			}
-			perOscillatorStep(b, oscillators, n)
+			perOscillatorStep(b, s.Len(), n)
 		})
 	}
-	run("slow/one", 1, func(from, to int) { marchSlow(&q[0], &s[0], m.a[max(from, 1)-1:to+1]) })
-	run("slow/four", lanes, func(from, to int) { marchSlowLanes(&q, &s, m.a[max(from, 1)-1:to+1], &peaks) })
-	run("fast/one", 1, func(from, to int) { marchFast(&r[0], &s[0], m.bend[from:to]) })
-	run("fast/four", lanes, func(from, to int) { marchFastLanes(&r, &s, m.bend[from:to], &peaks) })
 }
 
 // BenchmarkForms is SD of 100 oscillators that all take one form, maxima

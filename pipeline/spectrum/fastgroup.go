@@ -1,0 +1,133 @@
+package spectrum
+
+import (
+	"math"
+	"math/bits"
+
+	"swaybook/pipeline/internal/kernel"
+)
+
+// fastGroup is a number of fast oscillators, one to a lane. Lanes without one
+// rest at zero.
+type fastGroup struct {
+	members []fast
+	turn    *kernel.Fast
+}
+
+// newFastGroups splits a list into groups of as many as there are lanes.
+func newFastGroups(list []fast) []fastGroup {
+	var groups []fastGroup
+	for len(list) > 0 {
+		n := min(lanes, len(list))
+		g := fastGroup{list[:n:n], new(kernel.Fast)}
+		for l := range g.members {
+			q := &g.members[l].turn
+			g.turn.YY[l], g.turn.YZ[l] = q.yy, q.yz
+			g.turn.ZY[l], g.turn.ZZ[l] = q.zy, q.zz
+			g.turn.Jump[l] = q.jump
+		}
+		groups, list = append(groups, g), list[n:]
+	}
+	return groups
+}
+
+// solve puts the D of the members into dst, in units of the motion.
+func (g *fastGroup) solve(dst []float64, m *motion) {
+	g.march(m)
+	g.refine(m)
+	n := m.steps()
+	slope := m.a[n] - m.a[n-1]
+	end := &m.marks[m.blocks()]
+	for l := range g.members {
+		o := &g.members[l]
+		// The state is relative to the line of the last step, carried on.
+		s := state{end.X[l], end.Y[l]}
+		u := o.displacement(s, m.a[n], slope)
+		dst[o.index] = o.ringing.peak(m.best[l], u, o.velocity(s, slope)/o.phase)
+	}
+}
+
+// march sets the marks of all blocks.
+func (g *fastGroup) march(m *motion) {
+	start := &m.marks[0]
+	start.X, start.Y = kernel.Row{}, kernel.Row{}
+	for l := range g.members {
+		s := g.members[l].first(m)
+		start.X[l], start.Y[l] = s.x, s.y
+	}
+	for b := range m.blocks() {
+		from, to := m.block(b)
+		kernel.MarchFast(g.turn, &m.marks[b], &m.marks[b+1], m.bend[from:to])
+	}
+}
+
+// refine sets best to the greatest |u| of the steps, beginning with the blocks
+// of the greatest free vibration, which usually settle the others.
+func (g *fastGroup) refine(m *motion) {
+	live := ^uint32(0) >> (lanes - len(g.members))
+	marks := m.marks[:m.blocks()]
+	kernel.GreatestPeaks(&m.top, marks)
+	m.screen = kernel.Screen{}
+	for l := range m.top {
+		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
+		m.best[l] = 0
+	}
+	kernel.ScreenPeaks(&m.screen, marks, m.blockLines, m.flags)
+	for b := range m.flags {
+		m.done[b] = m.flags[b] & live
+		g.enter(m, b, m.done[b], true)
+	}
+	g.limit(m)
+	kernel.ScreenSquares(&m.screen, marks, m.blockLines, m.flags)
+	for b, flags := range m.flags {
+		g.enter(m, b, flags&live&^m.done[b], false)
+	}
+}
+
+// limit sets the screen so that a free vibration passes if with the straight
+// line it can exceed best.
+func (g *fastGroup) limit(m *motion) {
+	for l := range g.members {
+		o := &g.members[l]
+		m.screen.Limit[l] = float64(m.best[l] * o.cube)
+		m.screen.First[l], m.screen.Second[l] = o.phase, o.turn.jump
+	}
+}
+
+// enter marches a block again and looks into the steps that can beat best, for
+// the lanes flagged.
+func (g *fastGroup) enter(m *motion, b int, flags uint32, first bool) {
+	if flags == 0 {
+		return
+	}
+	from, to := m.block(b)
+	states, rowFlags := m.states[:to-from], m.rowFlags[:to-from]
+	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states)
+	if first {
+		g.sampled(m, from, states, flags)
+	}
+	g.limit(m)
+	kernel.ScreenSquares(&m.screen, states, m.stepLines[from:to], rowFlags)
+	for k := range states {
+		for left := rowFlags[k] & flags; left != 0; left &= left - 1 {
+			l := bits.TrailingZeros32(left)
+			s := state{states[k].X[l], states[k].Y[l]}
+			m.best[l] = g.members[l].step(m.best[l], s, states[k].Peak[l], m.a[from+k], m.a[from+k+1])
+		}
+	}
+}
+
+// sampled raises best to the greatest |u| at the starts of steps.
+func (g *fastGroup) sampled(m *motion, from int, states []kernel.Mark, flags uint32) {
+	for ; flags != 0; flags &= flags - 1 {
+		l := bits.TrailingZeros32(flags)
+		o := &g.members[l]
+		top := 0.0
+		for k := range states {
+			a, next := m.a[from+k], m.a[from+k+1]
+			u := states[k].X[l] + (float64(o.turn.jump*(next-a)) - float64(o.phase*a))
+			top = max(top, math.Abs(u))
+		}
+		m.best[l] = max(m.best[l], top/o.cube)
+	}
+}
