@@ -21,7 +21,7 @@ type fast struct {
 	cube    float64 // φ³
 	curve   float64 // (1 + 2ζ)·φ²
 	cuts    int     // pieces that a step is cut into for series
-	series  series  // of one piece
+	piece   slow    // the same oscillator, a piece being its step
 	ringing ringing
 }
 
@@ -35,7 +35,7 @@ type turn struct{ yy, yz, zy, zz, jump float64 }
 func newFast(index int, phase, damping float64) fast {
 	r := respond(phase, damping)
 	one := double{1, 0}
-	cuts := int(math.Ceil(phase / seriesPhase))
+	cuts := cutsOf(phase, damping)
 	return fast{
 		index: index, phase: phase,
 		turn: turn{
@@ -48,7 +48,7 @@ func newFast(index int, phase, damping float64) fast {
 		cube:    float64(phase*phase) * phase,
 		curve:   (1 + float64(2*damping)) * float64(phase*phase),
 		cuts:    cuts,
-		series:  newSeries(phase/float64(cuts), damping),
+		piece:   newPiece(phase/float64(cuts), damping),
 		ringing: newRinging(damping),
 	}
 }
@@ -110,15 +110,34 @@ func (o *fast) step(best float64, s state, square, a, next float64) float64 {
 	return o.follow(best, o.displacement(s, a, slope), o.velocity(s, slope), a, slope)
 }
 
+// cutsOf returns into how many pieces a step is cut: phases of at most
+// seriesPhase, and of less than 1/(2ζ), where func bounds holds.
+func cutsOf(phase, damping float64) int {
+	return int(math.Ceil(phase * max(1/seriesPhase, 2.01*damping)))
+}
+
+// newPiece returns what follow needs of an oscillator for steps of the given
+// phase, such as cutsOf gives.
+func newPiece(phase, damping float64) slow {
+	r := respond(phase, damping)
+	_, growth, _ := bounds(phase, damping)
+	return slow{phase: phase, exact: r.recurrence(), series: newSeries(phase, damping), growth: growth}
+}
+
 // follow takes one step in pieces short enough for their series.
 func (o *fast) follow(best, u, v, a, slope float64) float64 {
 	n := float64(o.cuts)
 	square := 1 / float64(n*n)
 	v /= n
-	rise := slope / n * square
+	rise := float64(slope / n * square)
+	r := &o.piece.exact
 	for j := range o.cuts {
-		at := (a + float64(slope*(float64(j)/n))) * square
-		best, u, v = o.series.peak(best, u, v, at, rise)
+		at := float64((a + float64(slope*(float64(j)/n))) * square)
+		next := at + rise
+		end := u + ((float64(r.uu*u) + float64(r.uv*v)) + (float64(r.pu*at) + float64(r.qu*next)))
+		vEnd := o.piece.arrival(u, v, at, next)
+		best = o.piece.within(best, u, v, end, vEnd, at, next)
+		u, v = end, vEnd
 	}
 	return best
 }

@@ -101,15 +101,15 @@ func (g *fastGroup) enter(m *motion, b int, flags uint32, first bool) {
 		return
 	}
 	from, to := m.block(b)
-	states, rowFlags := m.states[:to-from], m.rowFlags[:to-from]
+	states, stepFlags := m.states[:to-from], m.stepFlags[:to-from]
 	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states)
 	if first {
 		g.sampled(m, from, states, flags)
 	}
 	g.limit(m)
-	kernel.ScreenSquares(&m.screen, states, m.stepLines[from:to], rowFlags)
+	kernel.ScreenSquares(&m.screen, states, m.stepLines[from:to], stepFlags)
 	for k := range states {
-		for left := rowFlags[k] & flags; left != 0; left &= left - 1 {
+		for left := stepFlags[k] & flags; left != 0; left &= left - 1 {
 			l := bits.TrailingZeros32(left)
 			s := state{states[k].X[l], states[k].Y[l]}
 			m.best[l] = g.members[l].step(m.best[l], s, states[k].Peak[l], m.a[from+k], m.a[from+k+1])

@@ -22,24 +22,24 @@ type motion struct {
 	a        []float64 // samples
 	bend     []float64 // change of slope at the end of each step; 0 for the last
 	// What bounds on |u| are made of: of each block of steps and each step the
-	// greatest |a|, ends included, and the greatest |a' − a|; of each sample the
-	// greatest |a| of the steps that meet there.
-	blockLines, stepLines, sampleLines []kernel.Line
+	// greatest |a|, ends included, and the greatest |a' − a|.
+	blockLines, stepLines []kernel.Line
 	search
 }
 
 // search is the work space of one block of oscillators.
 type search struct {
-	marks    []kernel.Mark // of each block of steps, and the state at the end
-	flags    []uint32      // of each block of steps: the lanes that it may hold the maximum of
-	done     []uint32      // of each block of steps: the lanes that it was searched for
-	rows     [blockSteps + 1]kernel.Row
-	states   [blockSteps]kernel.Mark
-	rowFlags [blockSteps + 1]uint32
-	seen     [blockSteps]uint32 // of each step of a block: the lanes that it is done with
-	screen   kernel.Screen
-	top      kernel.Row // the greatest peak of each lane
-	best     [lanes]float64
+	marks      []kernel.Mark // of each block of steps, and the state at the end
+	flags      []uint32      // of each block of steps: the lanes that it may hold the maximum of
+	done       []uint32      // of each block of steps: the lanes that it was searched for
+	rows       [blockSteps + 1]kernel.Row
+	states     [blockSteps]kernel.Mark
+	stepFlags  [blockSteps]uint32
+	stepScreen kernel.StepScreen
+	seen       [blockSteps]uint32 // of each step of a block: the lanes that it is done with
+	screen     kernel.Screen
+	top        kernel.Row // the greatest peak of each lane
+	best       [lanes]float64
 }
 
 // load prepares the samples. It returns the D that every oscillator has without
@@ -77,7 +77,6 @@ func (m *motion) measure() {
 	steps, blocks := m.steps(), m.blocks()
 	m.bend = resize(m.bend, steps)
 	m.stepLines = resize(m.stepLines, steps)
-	m.sampleLines = resize(m.sampleLines, steps+1)
 	m.blockLines = resize(m.blockLines, blocks)
 	m.marks = resize(m.marks, blocks+1)
 	m.flags, m.done = resize(m.flags, blocks), resize(m.done, blocks)
@@ -96,12 +95,6 @@ func (m *motion) measure() {
 		}
 		m.blockLines[b] = block
 	}
-	last := 0.0
-	for k, step := range m.stepLines {
-		m.sampleLines[k] = kernel.Line{First: max(last, step.First)}
-		last = step.First
-	}
-	m.sampleLines[steps] = kernel.Line{First: last}
 }
 
 // steps is the number of intervals between samples.

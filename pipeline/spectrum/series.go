@@ -139,21 +139,6 @@ func (p *polynomial) turnTwice(best, v, w, vEnd, wEnd float64) float64 {
 	return p.turn(p.turn(best, 0, v, t, vMid), t, vMid, 1, vEnd)
 }
 
-// once returns the greater of best and |u| where the velocity, v at the start
-// and of opposite sign at the end, is zero, given that the acceleration w at the
-// start keeps its sign.
-func (p *polynomial) once(best, v, w, vEnd float64) float64 {
-	// A parabola for the velocity comes nearer than the chord.
-	bend := (vEnd - v) - w
-	root := math.Sqrt(math.FMA(w, w, -float64(4*float64(bend*v))))
-	guess := -2 * v / (w + math.Copysign(root, w))
-	if !(guess > 0 && guess < 1) {
-		guess = v / (v - vEnd)
-	}
-	_, u := p.rest(guess, 0, 1, vEnd)
-	return max(best, math.Abs(u))
-}
-
 // turnTolerance is the last correction δ, in parts of a step, with which a
 // turning point is taken as found. Newton's corrections square at each pass; and
 // u there, taken from the parabola at the point before, is wrong by a sixth of

@@ -104,9 +104,14 @@ func (o *slow) bound(u, a, b float64) float64 {
 // greater end by at most M/2·(1/2 − |end − u|/M)².
 func (o *slow) step(best, u, end, a, next float64) float64 {
 	v := o.velocity(u, end-u, a, next)
-	vEnd := o.arrival(u, v, a, next)
+	return o.within(best, u, v, end, o.arrival(u, v, a, next), a, next)
+}
+
+// within is step with the velocities at both ends given.
+func (o *slow) within(best, u, v, end, vEnd, a, next float64) float64 {
 	w := -math.FMA(o.series.linear, v, math.FMA(o.series.square, u, a))
 	wEnd := -math.FMA(o.series.linear, vEnd, math.FMA(o.series.square, end, next))
+	best = max(best, math.Abs(u), math.Abs(end))
 	curve := float64(o.growth * max(math.Abs(w), math.Abs(wEnd)))
 	spare := float64(curve*0.5) - math.Abs(end-u)
 	if spare <= 0 {
@@ -116,13 +121,47 @@ func (o *slow) step(best, u, end, a, next float64) float64 {
 	if float64(spare*spare) <= float64(float64(2*curve)*over) {
 		return best
 	}
-	if opposite(v, vEnd) && !opposite(w, wEnd) {
-		var p polynomial
-		o.series.expand(&p, u, v, a, next-a)
-		return p.once(best, v, w, vEnd)
+	if !opposite(v, vEnd) || opposite(w, wEnd) {
+		best, _, _ = o.series.peak(best, u, v, a, next-a)
+		return best
 	}
-	best, _, _ = o.series.peak(best, u, v, a, next-a)
-	return best
+	guess, found := parabolaRest(v, w, vEnd)
+	if found && o.cubicBound(u, v, w, vEnd, wEnd, curve, guess) <= best {
+		return best
+	}
+	var p polynomial
+	o.series.expand(&p, u, v, a, next-a)
+	_, top := p.rest(guess, 0, 1, vEnd)
+	return max(best, math.Abs(top))
+}
+
+// parabolaRest returns the time from 0 to 1 at which a parabola with the values
+// v at 0 and vEnd, of opposite sign, at 1 and with the slope w at 0 is zero. If
+// rounding prevents it, the chord takes the parabola's place and found is false.
+func parabolaRest(v, w, vEnd float64) (t float64, found bool) {
+	bend := (vEnd - v) - w
+	root := math.Sqrt(math.FMA(w, w, -float64(4*float64(bend*v))))
+	t = -2 * v / (w + math.Copysign(root, w))
+	if t > 0 && t < 1 {
+		return t, true
+	}
+	return v / (v - vEnd), false
+}
+
+// cubicBound returns a bound on |u| where the velocity of the step is zero. The
+// parabola with the velocities of both ends and the acceleration of the start
+// is off by at most K·t²(1 − t)/6, K = max|d²ü/dt²|, and the cubic that it is
+// the derivative of by K/72 therefore. The cubic is greatest where the parabola
+// is zero, rest. ü is a free vibration with |ü| <= curve, and its change differs
+// from its chord's by at most K/2, so that
+//
+//	K·(1 − ζφ) <= 2ζφ·|wEnd − w| + φ²·curve.
+func (o *slow) cubicBound(u, v, w, vEnd, wEnd, curve, rest float64) float64 {
+	linear, square := o.series.linear, o.series.square
+	k := (float64(linear*math.Abs(wEnd-w)) + float64(square*curve)) / (1 - float64(linear*0.5))
+	third := float64(((vEnd - v) - w) / 3)
+	cubic := math.FMA(math.FMA(math.FMA(third, rest, float64(w*0.5)), rest, v), rest, u)
+	return math.Abs(cubic) + float64(k*(1./72))
 }
 
 // velocity returns the velocity at a sample from the displacement u there and

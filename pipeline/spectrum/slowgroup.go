@@ -111,6 +111,23 @@ func (g *slowGroup) limit(m *motion) {
 	}
 }
 
+// limitSteps sets the screen of steps: |ü| within a step is at most M with
+//
+//	M·(1 − ζφ − φ²/8) = max|a| + 2ζφ·|end − u| + φ²·max(|u|, |end|),
+//
+// because |u̇| stays within |end − u| + M/2 and |u| within M/8 of its greater end.
+func (g *slowGroup) limitSteps(m *motion) {
+	for l := range g.members {
+		o := &g.members[l]
+		scale := math.Abs(o.eq.scale)
+		linear, square := o.series.linear, o.series.square
+		share := 1 / ((1 - float64(linear*0.5)) - float64(square*0.125))
+		m.stepScreen.Best[l] = m.best[l] / scale
+		m.stepScreen.Force[l] = share / scale
+		m.stepScreen.Curve[l], m.stepScreen.Slope[l] = float64(share*square), float64(share*linear)
+	}
+}
+
 // enter marches a block again and looks into the steps that can beat best, for
 // the lanes flagged.
 func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
@@ -119,7 +136,7 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	}
 	_, to := m.block(b)
 	a := m.slowSamples(b)
-	rows, rowFlags := m.rows[:len(a)-1], m.rowFlags[:len(a)-1]
+	rows, stepFlags := m.rows[:len(a)-1], m.stepFlags[:len(a)-2]
 	rows[0] = m.marks[b].X
 	kernel.TraceSlow(g.eq, &m.marks[b], a, rows[1:])
 	from := to - (len(rows) - 1)
@@ -127,10 +144,10 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	if first {
 		g.enterTop(m, rows, a, flags)
 	}
-	g.limit(m)
-	kernel.ScreenRows(&m.screen, rows, m.sampleLines[from:to+1], rowFlags)
-	for k := range len(rows) - 1 {
-		for left := (rowFlags[k] | rowFlags[k+1]) & flags &^ m.seen[k]; left != 0; left &= left - 1 {
+	g.limitSteps(m)
+	kernel.ScreenSteps(&m.stepScreen, rows, m.stepLines[from:to], stepFlags)
+	for k := range stepFlags {
+		for left := stepFlags[k] & flags &^ m.seen[k]; left != 0; left &= left - 1 {
 			l := bits.TrailingZeros32(left)
 			o := &g.members[l]
 			m.best[l] = o.between(m.best[l], rows, l, k, a)

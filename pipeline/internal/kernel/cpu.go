@@ -18,6 +18,7 @@ type level struct {
 	traceFast     func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark)
 	screen        func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
 	screenSquares func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
+	screenSteps   func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int)
 	greatest      func(top *Row, values *float64, stride, n int)
 }
 
@@ -26,7 +27,7 @@ var portable = level{
 	marchSlow: marchSlowGeneric, traceSlow: traceSlowGeneric,
 	marchFast: marchFastGeneric, traceFast: traceFastGeneric,
 	screen: screenGeneric, screenSquares: screenSquaresGeneric,
-	greatest: greatestGeneric,
+	screenSteps: screenStepsGeneric, greatest: greatestGeneric,
 }
 
 // levels are the kernels that this processor runs, the fastest first.

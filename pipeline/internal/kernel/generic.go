@@ -152,3 +152,26 @@ func greatestGeneric(top *Row, values *float64, stride, n int) {
 	}
 	*top = sum
 }
+
+func screenStepsGeneric(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int) {
+	list, forces, out := unsafe.Slice(rows, n+1), unsafe.Slice(lines, n), unsafe.Slice(flags, n)
+	for i, line := range forces {
+		sum := uint32(0)
+		for l := range Lanes {
+			x, end := list[i][l], list[i+1][l]
+			d, top := math.Abs(end-x), math.Abs(x)
+			if end = math.Abs(end); !(top > end) {
+				top = end
+			}
+			m := math.FMA(s.Slope[l], d, math.FMA(s.Curve[l], top, float64(s.Force[l]*line.First)))
+			spare := math.FMA(0.5, m, -d)
+			if !(spare > 0) {
+				spare = 0
+			}
+			if float64(spare*spare) > float64((m+m)*(s.Best[l]-top)) {
+				sum |= 1 << l
+			}
+		}
+		out[i] = sum
+	}
+}

@@ -114,6 +114,29 @@ func ScreenSquares(s *Screen, marks []Mark, lines []Line, flags []uint32) {
 	}
 }
 
+// StepScreen holds for each lane what bounds the value between two rows: the
+// curvature
+//
+//	m = Force·line.First + Curve·max(|x|, |x'|) + Slope·|x' − x|
+//
+// of a step from x to x', and the value Best that is to be exceeded, at least
+// as great as every |x|.
+type StepScreen struct{ Best, Force, Curve, Slope Row }
+
+// ScreenSteps sets bit l of flags[i] where the value of lane l can exceed Best
+// between rows[i] and rows[i+1]: where
+//
+//	max(0, m/2 − |x' − x|)² > 2·m·(Best − max(|x|, |x'|)),
+//
+// and clears it elsewhere. It panics unless there is one row more than there are
+// lines and flags.
+func ScreenSteps(s *StepScreen, rows []Row, lines []Line, flags []uint32) {
+	checkLines(len(rows)-1, len(lines), len(flags))
+	if len(lines) > 0 {
+		current.screenSteps(s, &rows[0], &lines[0], &flags[0], len(lines))
+	}
+}
+
 // GreatestPeaks sets top to the greatest peak of each lane, 0 for no marks.
 // Peaks are not negative; of NaN the result is unspecified.
 func GreatestPeaks(top *Row, marks []Mark) {

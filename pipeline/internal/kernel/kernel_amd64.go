@@ -34,6 +34,11 @@ func screenAVX2(s *float64, values *float64, stride int, lines *float64, flags *
 //go:noescape
 func screenSquaresAVX2(s *float64, values *float64, stride int, lines *float64, flags *uint32, n int)
 
+// screenStepsAVX2 is screenStepsGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+
 // greatestAVX2 is greatestGeneric for vectors of 4 lanes.
 //
 //go:noescape
@@ -68,6 +73,11 @@ func screenAVX512(s *float64, values *float64, stride int, lines *float64, flags
 //
 //go:noescape
 func screenSquaresAVX512(s *float64, values *float64, stride int, lines *float64, flags *uint32, n int)
+
+// screenStepsAVX512 is screenStepsGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int)
 
 // greatestAVX512 is greatestGeneric for vectors of 8 lanes.
 //

@@ -794,6 +794,206 @@ line_done:
 	VZEROUPPER
 	RET
 
+// func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+// Requires: AVX, AVX2, FMA3
+TEXT ·screenStepsAVX2(SB), NOSPLIT, $0-40
+	MOVQ         s+0(FP), AX
+	MOVQ         rows+8(FP), CX
+	MOVQ         lines+16(FP), DX
+	MOVQ         flags+24(FP), BX
+	MOVQ         n+32(FP), SI
+	VPCMPEQQ     Y0, Y0, Y0
+	VPSRLQ       $0x01, Y0, Y0
+	VPXOR        Y1, Y1, Y1
+	MOVQ         $0x3fe0000000000000, DI
+	VMOVQ        DI, X2
+	VBROADCASTSD X2, Y2
+	TESTQ        SI, SI
+	JLE          line_done
+
+line:
+	VBROADCASTSD (DX), Y3
+	XORL         R8, R8
+	VMOVUPD      224(CX), Y4
+	VMOVUPD      480(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       480(AX), Y3, Y7
+	VFMADD231PD  736(AX), Y4, Y7
+	VFMADD231PD  992(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      224(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      192(CX), Y4
+	VMOVUPD      448(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       448(AX), Y3, Y7
+	VFMADD231PD  704(AX), Y4, Y7
+	VFMADD231PD  960(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      192(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      160(CX), Y4
+	VMOVUPD      416(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       416(AX), Y3, Y7
+	VFMADD231PD  672(AX), Y4, Y7
+	VFMADD231PD  928(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      160(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      128(CX), Y4
+	VMOVUPD      384(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       384(AX), Y3, Y7
+	VFMADD231PD  640(AX), Y4, Y7
+	VFMADD231PD  896(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      128(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      96(CX), Y4
+	VMOVUPD      352(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       352(AX), Y3, Y7
+	VFMADD231PD  608(AX), Y4, Y7
+	VFMADD231PD  864(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      96(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      64(CX), Y4
+	VMOVUPD      320(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       320(AX), Y3, Y7
+	VFMADD231PD  576(AX), Y4, Y7
+	VFMADD231PD  832(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      64(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      32(CX), Y4
+	VMOVUPD      288(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       288(AX), Y3, Y7
+	VFMADD231PD  544(AX), Y4, Y7
+	VFMADD231PD  800(AX), Y6, Y7
+	VFMSUB231PD  Y2, Y7, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      32(AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y7, Y7, Y7
+	VMULPD       Y5, Y7, Y7
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y7, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	VMOVUPD      (CX), Y4
+	VMOVUPD      256(CX), Y5
+	VSUBPD       Y4, Y5, Y6
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VMAXPD       Y5, Y4, Y4
+	VMULPD       256(AX), Y3, Y3
+	VFMADD231PD  512(AX), Y4, Y3
+	VFMADD231PD  768(AX), Y6, Y3
+	VFMSUB231PD  Y2, Y3, Y6
+	VMAXPD       Y1, Y6, Y6
+	VMULPD       Y6, Y6, Y6
+	VMOVUPD      (AX), Y5
+	VSUBPD       Y4, Y5, Y5
+	VADDPD       Y3, Y3, Y3
+	VMULPD       Y5, Y3, Y3
+	SHLL         $0x04, R8
+	VCMPPD       $0x0e, Y3, Y6, Y6
+	VMOVMSKPD    Y6, DI
+	ORL          DI, R8
+	MOVL         R8, (BX)
+	ADDQ         $0x00000100, CX
+	ADDQ         $0x10, DX
+	SUBQ         $0x04, BX
+	ADDQ         $0x08, BX
+	DECQ         SI
+	JNZ          line
+
+line_done:
+	VZEROUPPER
+	RET
+
 // func greatestAVX2(top *float64, values *float64, stride int, n int)
 // Requires: AVX, AVX2
 TEXT ·greatestAVX2(SB), NOSPLIT, $0-32
@@ -1338,6 +1538,122 @@ line:
 	SUBQ         $0x04, SI
 	ADDQ         $0x08, SI
 	DECQ         DI
+	JNZ          line
+
+line_done:
+	VZEROUPPER
+	RET
+
+// func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+// Requires: AVX, AVX512F
+TEXT ·screenStepsAVX512(SB), NOSPLIT, $0-40
+	MOVQ         s+0(FP), AX
+	MOVQ         rows+8(FP), CX
+	MOVQ         lines+16(FP), DX
+	MOVQ         flags+24(FP), BX
+	MOVQ         n+32(FP), SI
+	VPTERNLOGQ   $0xff, Z0, Z0, Z0
+	VPSRLQ       $0x01, Z0, Z0
+	VPXORQ       Z1, Z1, Z1
+	MOVQ         $0x3fe0000000000000, DI
+	VMOVQ        DI, X2
+	VBROADCASTSD X2, Z2
+	TESTQ        SI, SI
+	JLE          line_done
+
+line:
+	VBROADCASTSD (DX), Z3
+	XORL         R8, R8
+	VMOVUPD      192(CX), Z4
+	VMOVUPD      448(CX), Z5
+	VSUBPD       Z4, Z5, Z6
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VMAXPD       Z5, Z4, Z4
+	VMULPD       448(AX), Z3, Z7
+	VFMADD231PD  704(AX), Z4, Z7
+	VFMADD231PD  960(AX), Z6, Z7
+	VFMSUB231PD  Z2, Z7, Z6
+	VMAXPD       Z1, Z6, Z6
+	VMULPD       Z6, Z6, Z6
+	VMOVUPD      192(AX), Z5
+	VSUBPD       Z4, Z5, Z5
+	VADDPD       Z7, Z7, Z7
+	VMULPD       Z5, Z7, Z7
+	SHLL         $0x08, R8
+	VCMPPD       $0x0e, Z7, Z6, K1
+	KMOVW        K1, DI
+	ORL          DI, R8
+	VMOVUPD      128(CX), Z4
+	VMOVUPD      384(CX), Z5
+	VSUBPD       Z4, Z5, Z6
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VMAXPD       Z5, Z4, Z4
+	VMULPD       384(AX), Z3, Z7
+	VFMADD231PD  640(AX), Z4, Z7
+	VFMADD231PD  896(AX), Z6, Z7
+	VFMSUB231PD  Z2, Z7, Z6
+	VMAXPD       Z1, Z6, Z6
+	VMULPD       Z6, Z6, Z6
+	VMOVUPD      128(AX), Z5
+	VSUBPD       Z4, Z5, Z5
+	VADDPD       Z7, Z7, Z7
+	VMULPD       Z5, Z7, Z7
+	SHLL         $0x08, R8
+	VCMPPD       $0x0e, Z7, Z6, K1
+	KMOVW        K1, DI
+	ORL          DI, R8
+	VMOVUPD      64(CX), Z4
+	VMOVUPD      320(CX), Z5
+	VSUBPD       Z4, Z5, Z6
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VMAXPD       Z5, Z4, Z4
+	VMULPD       320(AX), Z3, Z7
+	VFMADD231PD  576(AX), Z4, Z7
+	VFMADD231PD  832(AX), Z6, Z7
+	VFMSUB231PD  Z2, Z7, Z6
+	VMAXPD       Z1, Z6, Z6
+	VMULPD       Z6, Z6, Z6
+	VMOVUPD      64(AX), Z5
+	VSUBPD       Z4, Z5, Z5
+	VADDPD       Z7, Z7, Z7
+	VMULPD       Z5, Z7, Z7
+	SHLL         $0x08, R8
+	VCMPPD       $0x0e, Z7, Z6, K1
+	KMOVW        K1, DI
+	ORL          DI, R8
+	VMOVUPD      (CX), Z4
+	VMOVUPD      256(CX), Z5
+	VSUBPD       Z4, Z5, Z6
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VMAXPD       Z5, Z4, Z4
+	VMULPD       256(AX), Z3, Z3
+	VFMADD231PD  512(AX), Z4, Z3
+	VFMADD231PD  768(AX), Z6, Z3
+	VFMSUB231PD  Z2, Z3, Z6
+	VMAXPD       Z1, Z6, Z6
+	VMULPD       Z6, Z6, Z6
+	VMOVUPD      (AX), Z5
+	VSUBPD       Z4, Z5, Z5
+	VADDPD       Z3, Z3, Z3
+	VMULPD       Z5, Z3, Z3
+	SHLL         $0x08, R8
+	VCMPPD       $0x0e, Z3, Z6, K1
+	KMOVW        K1, DI
+	ORL          DI, R8
+	MOVL         R8, (BX)
+	ADDQ         $0x00000100, CX
+	ADDQ         $0x10, DX
+	SUBQ         $0x04, BX
+	ADDQ         $0x08, BX
+	DECQ         SI
 	JNZ          line
 
 line_done:

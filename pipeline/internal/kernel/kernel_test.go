@@ -28,6 +28,7 @@ type testCase struct {
 	fast   Fast
 	start  Mark
 	screen Screen
+	steps  StepScreen
 	ground []float64
 }
 
@@ -47,6 +48,10 @@ func newCase(seed uint64, n int) *testCase {
 		c.fast.Jump[l] = 2 * damping
 		c.start.X[l], c.start.Y[l] = r.NormFloat64(), r.NormFloat64()
 		c.screen.Limit[l], c.screen.First[l], c.screen.Second[l] = 2*r.Float64(), r.Float64(), r.Float64()
+	}
+	for l := range Lanes {
+		c.steps.Best[l], c.steps.Force[l] = 20*r.Float64(), r.Float64()
+		c.steps.Curve[l], c.steps.Slope[l] = r.Float64(), r.Float64()
 	}
 	guarded := make([]float64, n+16)
 	for i := range guarded {
@@ -89,6 +94,13 @@ func (c *testCase) run() *outcome {
 	ScreenPeaks(&c.screen, inner, lines, flags[1+steps:1+steps+n])
 	ScreenSquares(&c.screen, inner, lines, flags[1+steps+n:1+steps+2*n])
 	GreatestPeaks(&o.top, inner)
+	steps = max(steps-1, 0)
+	stepFlags := make([]uint32, steps+1)
+	stepFlags[steps] = 0xdeadbeef
+	if steps > 0 {
+		ScreenSteps(&c.steps, rows[1:steps+2], lines[:steps], stepFlags[:steps])
+	}
+	flags = append(flags, stepFlags...)
 	o.rows, o.marks, o.flags = rows, marks, flags
 	return o
 }

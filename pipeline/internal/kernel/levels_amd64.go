@@ -17,6 +17,7 @@ func vectorLevels() []level {
 			traceFast:     fastTrace(traceFastAVX512),
 			screen:        screening(screenAVX512),
 			screenSquares: screening(screenSquaresAVX512),
+			screenSteps:   stepScreening(screenStepsAVX512),
 			greatest:      maximum(greatestAVX512),
 		})
 	}
@@ -29,6 +30,7 @@ func vectorLevels() []level {
 			traceFast:     fastTrace(traceFastAVX2),
 			screen:        screening(screenAVX2),
 			screenSquares: screening(screenSquaresAVX2),
+			screenSteps:   stepScreening(screenStepsAVX2),
 			greatest:      maximum(greatestAVX2),
 		})
 	}
@@ -74,4 +76,10 @@ func screening(f func(s, values *float64, stride int, lines *float64, flags *uin
 
 func maximum(f func(top, values *float64, stride, n int)) func(*Row, *float64, int, int) {
 	return func(top *Row, values *float64, stride, n int) { f(&top[0], values, stride, n) }
+}
+
+func stepScreening(f func(s, rows, lines *float64, flags *uint32, n int)) func(*StepScreen, *Row, *Line, *uint32, int) {
+	return func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int) {
+		f(&s.Best[0], &rows[0], &lines.First, flags, n)
+	}
 }

@@ -41,6 +41,7 @@ func main() {
 		l.marchFast(true)
 		l.screen(false)
 		l.screen(true)
+		l.screenSteps()
 		l.greatest()
 	}
 	Generate()
@@ -318,17 +319,7 @@ func (l level) screen(squared bool) {
 				VMULPD(r, r, r)
 			}
 			l.and(l.at(values, 0, 0, v), mask, x)
-			SHLL(operand.U8(l.width), sum)
-			const greater = 14 // ordered, signalling
-			if l.width == 8 {
-				k := K()
-				VCMPPD(operand.U8(greater), r, x, k)
-				KMOVW(k, bits)
-			} else {
-				VCMPPD(operand.U8(greater), r, x, x)
-				VMOVMSKPD(x, bits)
-			}
-			ORL(bits, sum)
+			l.compare(x, r, bits, sum)
 		}
 		MOVL(sum, operand.Mem{Base: flags})
 		ADDQ(stride, values)
@@ -361,6 +352,73 @@ func (l level) greatest() {
 	for v := range sum {
 		VMOVUPD(sum[v], l.at(top, 0, 0, v))
 	}
+	VZEROUPPER()
+	RET()
+}
+
+// compare shifts one bit for each lane into sum, whether x > r. Lanes come last
+// first.
+func (l level) compare(x, r reg.VecVirtual, bits, sum reg.Register) {
+	SHLL(operand.U8(l.width), sum)
+	const greater = 14 // ordered, signalling
+	if l.width == 8 {
+		k := K()
+		VCMPPD(operand.U8(greater), r, x, k)
+		KMOVW(k, bits)
+	} else {
+		VCMPPD(operand.U8(greater), r, x, x)
+		VMOVMSKPD(x, bits)
+	}
+	ORL(bits, sum)
+}
+
+// screenSteps compares what a step can reach with the best known.
+func (l level) screenSteps() {
+	TEXT("screenSteps"+l.name, NOSPLIT, "func(s, rows, lines *float64, flags *uint32, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("screenSteps%s is screenStepsGeneric for vectors of %d lanes.", l.name, l.width))
+	s, rows := Load(Param("s"), GP64()), Load(Param("rows"), GP64())
+	lines, flags := Load(Param("lines"), GP64()), Load(Param("flags"), GP64())
+	n := Load(Param("n"), GP64())
+	mask := l.absolute()
+	zero, half, force := l.vector(), l.vector(), l.vector()
+	l.zero(zero)
+	word := GP64()
+	MOVQ(operand.U64(0x3fe0000000000000), word) // 0.5
+	x := XMM()
+	VMOVQ(word, x)
+	VBROADCASTSD(x, half)
+	bits, sum := GP32(), GP32()
+	input{}.loop("line", flags, n, nil, func() {
+		VBROADCASTSD(operand.Mem{Base: lines}, force)
+		XORL(sum, sum)
+		for v := lanes/l.width - 1; v >= 0; v-- {
+			u, end, d := l.vector(), l.vector(), l.vector()
+			VMOVUPD(l.at(rows, 0, 0, v), u)
+			VMOVUPD(l.at(rows, 1, 0, v), end)
+			VSUBPD(u, end, d)
+			l.and(mask, u, u)
+			l.and(mask, end, end)
+			l.and(mask, d, d)
+			VMAXPD(end, u, u) // the greater end
+			m := l.vector()
+			VMULPD(l.at(s, 1, 0, v), force, m)
+			VFMADD231PD(l.at(s, 2, 0, v), u, m)
+			VFMADD231PD(l.at(s, 3, 0, v), d, m) // the curvature
+			VFMSUB231PD(half, m, d)             // what it can exceed the chord by, half·m − d
+			VMAXPD(zero, d, d)
+			VMULPD(d, d, d)
+			VMOVUPD(l.at(s, 0, 0, v), end)
+			VSUBPD(u, end, end) // what is missing to best
+			VADDPD(m, m, m)
+			VMULPD(end, m, m)
+			l.compare(d, m, bits, sum)
+		}
+		MOVL(sum, operand.Mem{Base: flags})
+		ADDQ(operand.U32(row), rows)
+		ADDQ(operand.Imm(16), lines)
+		SUBQ(operand.Imm(4), flags) // the loop moves on by 8
+	})
 	VZEROUPPER()
 	RET()
 }
