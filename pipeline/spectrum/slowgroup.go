@@ -145,9 +145,9 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 		g.enterTop(m, rows, a, flags)
 	}
 	g.limitSteps(m)
-	kernel.ScreenSteps(&m.stepScreen, rows, m.stepLines[from:to], stepFlags)
+	kernel.ScreenSteps(&m.stepScreen, rows, m.stepLines[from:to], stepFlags, flags)
 	for k := range stepFlags {
-		for left := stepFlags[k] & flags &^ m.seen[k]; left != 0; left &= left - 1 {
+		for left := stepFlags[k] &^ m.seen[k]; left != 0; left &= left - 1 {
 			l := bits.TrailingZeros32(left)
 			o := &g.members[l]
 			m.best[l] = o.between(m.best[l], rows, l, k, a)

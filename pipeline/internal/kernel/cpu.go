@@ -18,7 +18,7 @@ type level struct {
 	traceFast     func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark)
 	screen        func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
 	screenSquares func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
-	screenSteps   func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int)
+	screenSteps   func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32)
 	greatest      func(top *Row, values *float64, stride, n int)
 }
 

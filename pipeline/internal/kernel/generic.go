@@ -2,6 +2,7 @@ package kernel
 
 import (
 	"math"
+	"math/bits"
 	"unsafe"
 )
 
@@ -140,6 +141,31 @@ func (s *Screen) at(line Line, l int) float64 {
 	return math.FMA(-s.Second[l], line.Second, math.FMA(-s.First[l], line.First, s.Limit[l]))
 }
 
+func screenStepsGeneric(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32) {
+	list, forces, out := unsafe.Slice(rows, n+1), unsafe.Slice(lines, n), unsafe.Slice(flags, n)
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		best, force, curve, slope := s.Best[l], s.Force[l], s.Curve[l], s.Slope[l]
+		x := list[0][l]
+		for i, line := range forces {
+			end := list[i+1][l]
+			d, top := math.Abs(end-x), math.Abs(x)
+			if y := math.Abs(end); !(top > y) {
+				top = y
+			}
+			x = end
+			m := math.FMA(slope, d, math.FMA(curve, top, float64(force*line.First)))
+			spare := math.FMA(0.5, m, -d)
+			if !(spare > 0) {
+				spare = 0
+			}
+			if float64(spare*spare) > float64((m+m)*(best-top)) {
+				out[i] |= 1 << l
+			}
+		}
+	}
+}
+
 func greatestGeneric(top *Row, values *float64, stride, n int) {
 	var sum Row
 	for i := range n {
@@ -151,27 +177,4 @@ func greatestGeneric(top *Row, values *float64, stride, n int) {
 		}
 	}
 	*top = sum
-}
-
-func screenStepsGeneric(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int) {
-	list, forces, out := unsafe.Slice(rows, n+1), unsafe.Slice(lines, n), unsafe.Slice(flags, n)
-	for i, line := range forces {
-		sum := uint32(0)
-		for l := range Lanes {
-			x, end := list[i][l], list[i+1][l]
-			d, top := math.Abs(end-x), math.Abs(x)
-			if end = math.Abs(end); !(top > end) {
-				top = end
-			}
-			m := math.FMA(s.Slope[l], d, math.FMA(s.Curve[l], top, float64(s.Force[l]*line.First)))
-			spare := math.FMA(0.5, m, -d)
-			if !(spare > 0) {
-				spare = 0
-			}
-			if float64(spare*spare) > float64((m+m)*(s.Best[l]-top)) {
-				sum |= 1 << l
-			}
-		}
-		out[i] = sum
-	}
 }

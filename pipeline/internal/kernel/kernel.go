@@ -128,12 +128,13 @@ type StepScreen struct{ Best, Force, Curve, Slope Row }
 //
 //	max(0, m/2 − |x' − x|)² > 2·m·(Best − max(|x|, |x'|)),
 //
-// and clears it elsewhere. It panics unless there is one row more than there are
+// and l is one of the bits of want, and clears it elsewhere. It panics unless there is one row more than there are
 // lines and flags.
-func ScreenSteps(s *StepScreen, rows []Row, lines []Line, flags []uint32) {
+func ScreenSteps(s *StepScreen, rows []Row, lines []Line, flags []uint32, want uint32) {
 	checkLines(len(rows)-1, len(lines), len(flags))
+	clear(flags)
 	if len(lines) > 0 {
-		current.screenSteps(s, &rows[0], &lines[0], &flags[0], len(lines))
+		current.screenSteps(s, &rows[0], &lines[0], &flags[0], len(lines), want)
 	}
 }
 

@@ -37,7 +37,7 @@ func screenSquaresAVX2(s *float64, values *float64, stride int, lines *float64, 
 // screenStepsAVX2 is screenStepsGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int, want uint32)
 
 // greatestAVX2 is greatestGeneric for vectors of 4 lanes.
 //
@@ -77,7 +77,7 @@ func screenSquaresAVX512(s *float64, values *float64, stride int, lines *float64
 // screenStepsAVX512 is screenStepsGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int, want uint32)
 
 // greatestAVX512 is greatestGeneric for vectors of 8 lanes.
 //

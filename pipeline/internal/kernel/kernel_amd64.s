@@ -611,65 +611,65 @@ line:
 	VFNMADD231PD 480(AX), Y1, Y3
 	VFNMADD231PD 736(AX), Y2, Y3
 	VPAND        224(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      192(AX), Y3
 	VFNMADD231PD 448(AX), Y1, Y3
 	VFNMADD231PD 704(AX), Y2, Y3
 	VPAND        192(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      160(AX), Y3
 	VFNMADD231PD 416(AX), Y1, Y3
 	VFNMADD231PD 672(AX), Y2, Y3
 	VPAND        160(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      128(AX), Y3
 	VFNMADD231PD 384(AX), Y1, Y3
 	VFNMADD231PD 640(AX), Y2, Y3
 	VPAND        128(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      96(AX), Y3
 	VFNMADD231PD 352(AX), Y1, Y3
 	VFNMADD231PD 608(AX), Y2, Y3
 	VPAND        96(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      64(AX), Y3
 	VFNMADD231PD 320(AX), Y1, Y3
 	VFNMADD231PD 576(AX), Y2, Y3
 	VPAND        64(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      32(AX), Y3
 	VFNMADD231PD 288(AX), Y1, Y3
 	VFNMADD231PD 544(AX), Y2, Y3
 	VPAND        32(CX), Y0, Y4
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y4, Y4
 	VMOVMSKPD    Y4, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      (AX), Y3
 	VFNMADD231PD 256(AX), Y1, Y3
 	VFNMADD231PD 512(AX), Y2, Y3
 	VPAND        (CX), Y0, Y1
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y3, Y1, Y1
 	VMOVMSKPD    Y1, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	MOVL         R9, (SI)
 	ADDQ         DX, CX
@@ -708,9 +708,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        224(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      192(AX), Y4
 	VFNMADD231PD 448(AX), Y2, Y4
@@ -718,9 +718,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        192(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      160(AX), Y4
 	VFNMADD231PD 416(AX), Y2, Y4
@@ -728,9 +728,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        160(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      128(AX), Y4
 	VFNMADD231PD 384(AX), Y2, Y4
@@ -738,9 +738,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        128(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      96(AX), Y4
 	VFNMADD231PD 352(AX), Y2, Y4
@@ -748,9 +748,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        96(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      64(AX), Y4
 	VFNMADD231PD 320(AX), Y2, Y4
@@ -758,9 +758,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        64(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      32(AX), Y4
 	VFNMADD231PD 288(AX), Y2, Y4
@@ -768,9 +768,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        32(CX), Y0, Y5
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y5, Y5
 	VMOVMSKPD    Y5, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	VMOVUPD      (AX), Y4
 	VFNMADD231PD 256(AX), Y2, Y4
@@ -778,9 +778,9 @@ line:
 	VMAXPD       Y1, Y4, Y4
 	VMULPD       Y4, Y4, Y4
 	VPAND        (CX), Y0, Y2
-	SHLL         $0x04, R9
 	VCMPPD       $0x0e, Y4, Y2, Y2
 	VMOVMSKPD    Y2, R8
+	SHLL         $0x04, R9
 	ORL          R8, R9
 	MOVL         R9, (SI)
 	ADDQ         DX, CX
@@ -794,203 +794,386 @@ line_done:
 	VZEROUPPER
 	RET
 
-// func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+// func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int, want uint32)
 // Requires: AVX, AVX2, FMA3
-TEXT ·screenStepsAVX2(SB), NOSPLIT, $0-40
+TEXT ·screenStepsAVX2(SB), NOSPLIT, $0-44
 	MOVQ         s+0(FP), AX
 	MOVQ         rows+8(FP), CX
 	MOVQ         lines+16(FP), DX
 	MOVQ         flags+24(FP), BX
 	MOVQ         n+32(FP), SI
+	MOVL         want+40(FP), DI
 	VPCMPEQQ     Y0, Y0, Y0
 	VPSRLQ       $0x01, Y0, Y0
 	VPXOR        Y1, Y1, Y1
-	MOVQ         $0x3fe0000000000000, DI
-	VMOVQ        DI, X2
+	MOVQ         $0x3fe0000000000000, R8
+	VMOVQ        R8, X2
 	VBROADCASTSD X2, Y2
-	TESTQ        SI, SI
-	JLE          line_done
+	TESTL        $0x0000000f, DI
+	JZ           skip0
+	MOVQ         CX, R8
+	MOVQ         DX, R9
+	MOVQ         BX, R10
+	MOVQ         SI, R11
+	VMOVUPD      (AX), Y3
+	VMOVUPD      256(AX), Y4
+	VMOVUPD      512(AX), Y5
+	VMOVUPD      768(AX), Y6
+	VMOVUPD      (R8), Y7
+	TESTQ        R11, R11
+	JLE          line0_done
 
-line:
-	VBROADCASTSD (DX), Y3
-	XORL         R8, R8
-	VMOVUPD      224(CX), Y4
-	VMOVUPD      480(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       480(AX), Y3, Y7
-	VFMADD231PD  736(AX), Y4, Y7
-	VFMADD231PD  992(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      224(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      192(CX), Y4
-	VMOVUPD      448(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       448(AX), Y3, Y7
-	VFMADD231PD  704(AX), Y4, Y7
-	VFMADD231PD  960(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      192(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      160(CX), Y4
-	VMOVUPD      416(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       416(AX), Y3, Y7
-	VFMADD231PD  672(AX), Y4, Y7
-	VFMADD231PD  928(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      160(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      128(CX), Y4
-	VMOVUPD      384(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       384(AX), Y3, Y7
-	VFMADD231PD  640(AX), Y4, Y7
-	VFMADD231PD  896(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      128(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      96(CX), Y4
-	VMOVUPD      352(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       352(AX), Y3, Y7
-	VFMADD231PD  608(AX), Y4, Y7
-	VFMADD231PD  864(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      96(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      64(CX), Y4
-	VMOVUPD      320(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       320(AX), Y3, Y7
-	VFMADD231PD  576(AX), Y4, Y7
-	VFMADD231PD  832(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      64(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      32(CX), Y4
-	VMOVUPD      288(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       288(AX), Y3, Y7
-	VFMADD231PD  544(AX), Y4, Y7
-	VFMADD231PD  800(AX), Y6, Y7
-	VFMSUB231PD  Y2, Y7, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      32(AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y7, Y7, Y7
-	VMULPD       Y5, Y7, Y7
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y7, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	VMOVUPD      (CX), Y4
-	VMOVUPD      256(CX), Y5
-	VSUBPD       Y4, Y5, Y6
-	VPAND        Y0, Y4, Y4
-	VPAND        Y0, Y5, Y5
-	VPAND        Y0, Y6, Y6
-	VMAXPD       Y5, Y4, Y4
-	VMULPD       256(AX), Y3, Y3
-	VFMADD231PD  512(AX), Y4, Y3
-	VFMADD231PD  768(AX), Y6, Y3
-	VFMSUB231PD  Y2, Y3, Y6
-	VMAXPD       Y1, Y6, Y6
-	VMULPD       Y6, Y6, Y6
-	VMOVUPD      (AX), Y5
-	VSUBPD       Y4, Y5, Y5
-	VADDPD       Y3, Y3, Y3
-	VMULPD       Y5, Y3, Y3
-	SHLL         $0x04, R8
-	VCMPPD       $0x0e, Y3, Y6, Y6
-	VMOVMSKPD    Y6, DI
-	ORL          DI, R8
-	MOVL         R8, (BX)
+line0:
+	VMOVUPD      256(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line0
+
+line0_done:
+skip0:
+	TESTL   $0x000000f0, DI
+	JZ      skip1
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 32(AX), Y3
+	VMOVUPD 288(AX), Y4
+	VMOVUPD 544(AX), Y5
+	VMOVUPD 800(AX), Y6
+	VMOVUPD 32(R8), Y7
+	TESTQ   R11, R11
+	JLE     line1_done
+
+line1:
+	VMOVUPD      288(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	SHLL         $0x04, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line1
+
+line1_done:
+skip1:
+	TESTL   $0x00000f00, DI
+	JZ      skip2
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 64(AX), Y3
+	VMOVUPD 320(AX), Y4
+	VMOVUPD 576(AX), Y5
+	VMOVUPD 832(AX), Y6
+	VMOVUPD 64(R8), Y7
+	TESTQ   R11, R11
+	JLE     line2_done
+
+line2:
+	VMOVUPD      320(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	SHLL         $0x08, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line2
+
+line2_done:
+skip2:
+	TESTL   $0x0000f000, DI
+	JZ      skip3
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 96(AX), Y3
+	VMOVUPD 352(AX), Y4
+	VMOVUPD 608(AX), Y5
+	VMOVUPD 864(AX), Y6
+	VMOVUPD 96(R8), Y7
+	TESTQ   R11, R11
+	JLE     line3_done
+
+line3:
+	VMOVUPD      352(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	SHLL         $0x0c, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line3
+
+line3_done:
+skip3:
+	TESTL   $0x000f0000, DI
+	JZ      skip4
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 128(AX), Y3
+	VMOVUPD 384(AX), Y4
+	VMOVUPD 640(AX), Y5
+	VMOVUPD 896(AX), Y6
+	VMOVUPD 128(R8), Y7
+	TESTQ   R11, R11
+	JLE     line4_done
+
+line4:
+	VMOVUPD      384(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	SHLL         $0x10, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line4
+
+line4_done:
+skip4:
+	TESTL   $0x00f00000, DI
+	JZ      skip5
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 160(AX), Y3
+	VMOVUPD 416(AX), Y4
+	VMOVUPD 672(AX), Y5
+	VMOVUPD 928(AX), Y6
+	VMOVUPD 160(R8), Y7
+	TESTQ   R11, R11
+	JLE     line5_done
+
+line5:
+	VMOVUPD      416(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	SHLL         $0x14, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line5
+
+line5_done:
+skip5:
+	TESTL   $0x0f000000, DI
+	JZ      skip6
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 192(AX), Y3
+	VMOVUPD 448(AX), Y4
+	VMOVUPD 704(AX), Y5
+	VMOVUPD 960(AX), Y6
+	VMOVUPD 192(R8), Y7
+	TESTQ   R11, R11
+	JLE     line6_done
+
+line6:
+	VMOVUPD      448(R8), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (R9), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, R12
+	SHLL         $0x18, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line6
+
+line6_done:
+skip6:
+	TESTL   $0xf0000000, DI
+	JZ      skip7
+	MOVQ    DX, DX
+	MOVQ    SI, SI
+	VMOVUPD 224(AX), Y3
+	VMOVUPD 480(AX), Y4
+	VMOVUPD 736(AX), Y5
+	VMOVUPD 992(AX), Y6
+	VMOVUPD 224(CX), Y7
+	TESTQ   SI, SI
+	JLE     line7_done
+
+line7:
+	VMOVUPD      480(CX), Y8
+	VSUBPD       Y7, Y8, Y9
+	VPAND        Y0, Y9, Y9
+	VPAND        Y0, Y7, Y7
+	VPAND        Y0, Y8, Y10
+	VMAXPD       Y10, Y7, Y10
+	VMOVAPD      Y8, Y7
+	VBROADCASTSD (DX), Y8
+	VMULPD       Y4, Y8, Y8
+	VFMADD231PD  Y5, Y10, Y8
+	VFMADD231PD  Y6, Y9, Y8
+	VFMSUB231PD  Y2, Y8, Y9
+	VMAXPD       Y1, Y9, Y9
+	VMULPD       Y9, Y9, Y9
+	VSUBPD       Y10, Y3, Y10
+	VADDPD       Y8, Y8, Y8
+	VMULPD       Y10, Y8, Y8
+	VCMPPD       $0x0e, Y8, Y9, Y9
+	VMOVMSKPD    Y9, AX
+	SHLL         $0x1c, AX
+	ANDL         DI, AX
+	ORL          AX, (BX)
 	ADDQ         $0x00000100, CX
 	ADDQ         $0x10, DX
 	SUBQ         $0x04, BX
 	ADDQ         $0x08, BX
 	DECQ         SI
-	JNZ          line
+	JNZ          line7
 
-line_done:
+line7_done:
+skip7:
 	VZEROUPPER
 	RET
 
@@ -1433,33 +1616,33 @@ line:
 	VFNMADD231PD 448(AX), Z1, Z3
 	VFNMADD231PD 704(AX), Z2, Z3
 	VPANDQ       192(CX), Z0, Z4
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z3, Z4, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	VMOVUPD      128(AX), Z3
 	VFNMADD231PD 384(AX), Z1, Z3
 	VFNMADD231PD 640(AX), Z2, Z3
 	VPANDQ       128(CX), Z0, Z4
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z3, Z4, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	VMOVUPD      64(AX), Z3
 	VFNMADD231PD 320(AX), Z1, Z3
 	VFNMADD231PD 576(AX), Z2, Z3
 	VPANDQ       64(CX), Z0, Z4
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z3, Z4, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	VMOVUPD      (AX), Z3
 	VFNMADD231PD 256(AX), Z1, Z3
 	VFNMADD231PD 512(AX), Z2, Z3
 	VPANDQ       (CX), Z0, Z1
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z3, Z1, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	MOVL         R9, (SI)
 	ADDQ         DX, CX
@@ -1498,9 +1681,9 @@ line:
 	VMAXPD       Z1, Z4, Z4
 	VMULPD       Z4, Z4, Z4
 	VPANDQ       192(CX), Z0, Z5
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z4, Z5, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	VMOVUPD      128(AX), Z4
 	VFNMADD231PD 384(AX), Z2, Z4
@@ -1508,9 +1691,9 @@ line:
 	VMAXPD       Z1, Z4, Z4
 	VMULPD       Z4, Z4, Z4
 	VPANDQ       128(CX), Z0, Z5
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z4, Z5, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	VMOVUPD      64(AX), Z4
 	VFNMADD231PD 320(AX), Z2, Z4
@@ -1518,9 +1701,9 @@ line:
 	VMAXPD       Z1, Z4, Z4
 	VMULPD       Z4, Z4, Z4
 	VPANDQ       64(CX), Z0, Z5
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z4, Z5, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	VMOVUPD      (AX), Z4
 	VFNMADD231PD 256(AX), Z2, Z4
@@ -1528,9 +1711,9 @@ line:
 	VMAXPD       Z1, Z4, Z4
 	VMULPD       Z4, Z4, Z4
 	VPANDQ       (CX), Z0, Z2
-	SHLL         $0x08, R9
 	VCMPPD       $0x0e, Z4, Z2, K1
 	KMOVW        K1, R8
+	SHLL         $0x08, R9
 	ORL          R8, R9
 	MOVL         R9, (SI)
 	ADDQ         DX, CX
@@ -1544,119 +1727,202 @@ line_done:
 	VZEROUPPER
 	RET
 
-// func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int)
+// func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int, want uint32)
 // Requires: AVX, AVX512F
-TEXT ·screenStepsAVX512(SB), NOSPLIT, $0-40
+TEXT ·screenStepsAVX512(SB), NOSPLIT, $0-44
 	MOVQ         s+0(FP), AX
 	MOVQ         rows+8(FP), CX
 	MOVQ         lines+16(FP), DX
 	MOVQ         flags+24(FP), BX
 	MOVQ         n+32(FP), SI
+	MOVL         want+40(FP), DI
 	VPTERNLOGQ   $0xff, Z0, Z0, Z0
 	VPSRLQ       $0x01, Z0, Z0
 	VPXORQ       Z1, Z1, Z1
-	MOVQ         $0x3fe0000000000000, DI
-	VMOVQ        DI, X2
+	MOVQ         $0x3fe0000000000000, R8
+	VMOVQ        R8, X2
 	VBROADCASTSD X2, Z2
-	TESTQ        SI, SI
-	JLE          line_done
+	TESTL        $0x000000ff, DI
+	JZ           skip0
+	MOVQ         CX, R8
+	MOVQ         DX, R9
+	MOVQ         BX, R10
+	MOVQ         SI, R11
+	VMOVUPD      (AX), Z3
+	VMOVUPD      256(AX), Z4
+	VMOVUPD      512(AX), Z5
+	VMOVUPD      768(AX), Z6
+	VMOVUPD      (R8), Z7
+	TESTQ        R11, R11
+	JLE          line0_done
 
-line:
-	VBROADCASTSD (DX), Z3
-	XORL         R8, R8
-	VMOVUPD      192(CX), Z4
-	VMOVUPD      448(CX), Z5
-	VSUBPD       Z4, Z5, Z6
-	VPANDQ       Z0, Z4, Z4
-	VPANDQ       Z0, Z5, Z5
-	VPANDQ       Z0, Z6, Z6
-	VMAXPD       Z5, Z4, Z4
-	VMULPD       448(AX), Z3, Z7
-	VFMADD231PD  704(AX), Z4, Z7
-	VFMADD231PD  960(AX), Z6, Z7
-	VFMSUB231PD  Z2, Z7, Z6
-	VMAXPD       Z1, Z6, Z6
-	VMULPD       Z6, Z6, Z6
-	VMOVUPD      192(AX), Z5
-	VSUBPD       Z4, Z5, Z5
-	VADDPD       Z7, Z7, Z7
-	VMULPD       Z5, Z7, Z7
-	SHLL         $0x08, R8
-	VCMPPD       $0x0e, Z7, Z6, K1
-	KMOVW        K1, DI
-	ORL          DI, R8
-	VMOVUPD      128(CX), Z4
-	VMOVUPD      384(CX), Z5
-	VSUBPD       Z4, Z5, Z6
-	VPANDQ       Z0, Z4, Z4
-	VPANDQ       Z0, Z5, Z5
-	VPANDQ       Z0, Z6, Z6
-	VMAXPD       Z5, Z4, Z4
-	VMULPD       384(AX), Z3, Z7
-	VFMADD231PD  640(AX), Z4, Z7
-	VFMADD231PD  896(AX), Z6, Z7
-	VFMSUB231PD  Z2, Z7, Z6
-	VMAXPD       Z1, Z6, Z6
-	VMULPD       Z6, Z6, Z6
-	VMOVUPD      128(AX), Z5
-	VSUBPD       Z4, Z5, Z5
-	VADDPD       Z7, Z7, Z7
-	VMULPD       Z5, Z7, Z7
-	SHLL         $0x08, R8
-	VCMPPD       $0x0e, Z7, Z6, K1
-	KMOVW        K1, DI
-	ORL          DI, R8
-	VMOVUPD      64(CX), Z4
-	VMOVUPD      320(CX), Z5
-	VSUBPD       Z4, Z5, Z6
-	VPANDQ       Z0, Z4, Z4
-	VPANDQ       Z0, Z5, Z5
-	VPANDQ       Z0, Z6, Z6
-	VMAXPD       Z5, Z4, Z4
-	VMULPD       320(AX), Z3, Z7
-	VFMADD231PD  576(AX), Z4, Z7
-	VFMADD231PD  832(AX), Z6, Z7
-	VFMSUB231PD  Z2, Z7, Z6
-	VMAXPD       Z1, Z6, Z6
-	VMULPD       Z6, Z6, Z6
-	VMOVUPD      64(AX), Z5
-	VSUBPD       Z4, Z5, Z5
-	VADDPD       Z7, Z7, Z7
-	VMULPD       Z5, Z7, Z7
-	SHLL         $0x08, R8
-	VCMPPD       $0x0e, Z7, Z6, K1
-	KMOVW        K1, DI
-	ORL          DI, R8
-	VMOVUPD      (CX), Z4
-	VMOVUPD      256(CX), Z5
-	VSUBPD       Z4, Z5, Z6
-	VPANDQ       Z0, Z4, Z4
-	VPANDQ       Z0, Z5, Z5
-	VPANDQ       Z0, Z6, Z6
-	VMAXPD       Z5, Z4, Z4
-	VMULPD       256(AX), Z3, Z3
-	VFMADD231PD  512(AX), Z4, Z3
-	VFMADD231PD  768(AX), Z6, Z3
-	VFMSUB231PD  Z2, Z3, Z6
-	VMAXPD       Z1, Z6, Z6
-	VMULPD       Z6, Z6, Z6
-	VMOVUPD      (AX), Z5
-	VSUBPD       Z4, Z5, Z5
-	VADDPD       Z3, Z3, Z3
-	VMULPD       Z5, Z3, Z3
-	SHLL         $0x08, R8
-	VCMPPD       $0x0e, Z3, Z6, K1
-	KMOVW        K1, DI
-	ORL          DI, R8
-	MOVL         R8, (BX)
+line0:
+	VMOVUPD      256(R8), Z8
+	VSUBPD       Z7, Z8, Z9
+	VPANDQ       Z0, Z9, Z9
+	VPANDQ       Z0, Z7, Z7
+	VPANDQ       Z0, Z8, Z10
+	VMAXPD       Z10, Z7, Z10
+	VMOVAPD      Z8, Z7
+	VBROADCASTSD (R9), Z8
+	VMULPD       Z4, Z8, Z8
+	VFMADD231PD  Z5, Z10, Z8
+	VFMADD231PD  Z6, Z9, Z8
+	VFMSUB231PD  Z2, Z8, Z9
+	VMAXPD       Z1, Z9, Z9
+	VMULPD       Z9, Z9, Z9
+	VSUBPD       Z10, Z3, Z10
+	VADDPD       Z8, Z8, Z8
+	VMULPD       Z10, Z8, Z8
+	VCMPPD       $0x0e, Z8, Z9, K1
+	KMOVW        K1, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line0
+
+line0_done:
+skip0:
+	TESTL   $0x0000ff00, DI
+	JZ      skip1
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 64(AX), Z3
+	VMOVUPD 320(AX), Z4
+	VMOVUPD 576(AX), Z5
+	VMOVUPD 832(AX), Z6
+	VMOVUPD 64(R8), Z7
+	TESTQ   R11, R11
+	JLE     line1_done
+
+line1:
+	VMOVUPD      320(R8), Z8
+	VSUBPD       Z7, Z8, Z9
+	VPANDQ       Z0, Z9, Z9
+	VPANDQ       Z0, Z7, Z7
+	VPANDQ       Z0, Z8, Z10
+	VMAXPD       Z10, Z7, Z10
+	VMOVAPD      Z8, Z7
+	VBROADCASTSD (R9), Z8
+	VMULPD       Z4, Z8, Z8
+	VFMADD231PD  Z5, Z10, Z8
+	VFMADD231PD  Z6, Z9, Z8
+	VFMSUB231PD  Z2, Z8, Z9
+	VMAXPD       Z1, Z9, Z9
+	VMULPD       Z9, Z9, Z9
+	VSUBPD       Z10, Z3, Z10
+	VADDPD       Z8, Z8, Z8
+	VMULPD       Z10, Z8, Z8
+	VCMPPD       $0x0e, Z8, Z9, K1
+	KMOVW        K1, R12
+	SHLL         $0x08, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line1
+
+line1_done:
+skip1:
+	TESTL   $0x00ff0000, DI
+	JZ      skip2
+	MOVQ    CX, R8
+	MOVQ    DX, R9
+	MOVQ    BX, R10
+	MOVQ    SI, R11
+	VMOVUPD 128(AX), Z3
+	VMOVUPD 384(AX), Z4
+	VMOVUPD 640(AX), Z5
+	VMOVUPD 896(AX), Z6
+	VMOVUPD 128(R8), Z7
+	TESTQ   R11, R11
+	JLE     line2_done
+
+line2:
+	VMOVUPD      384(R8), Z8
+	VSUBPD       Z7, Z8, Z9
+	VPANDQ       Z0, Z9, Z9
+	VPANDQ       Z0, Z7, Z7
+	VPANDQ       Z0, Z8, Z10
+	VMAXPD       Z10, Z7, Z10
+	VMOVAPD      Z8, Z7
+	VBROADCASTSD (R9), Z8
+	VMULPD       Z4, Z8, Z8
+	VFMADD231PD  Z5, Z10, Z8
+	VFMADD231PD  Z6, Z9, Z8
+	VFMSUB231PD  Z2, Z8, Z9
+	VMAXPD       Z1, Z9, Z9
+	VMULPD       Z9, Z9, Z9
+	VSUBPD       Z10, Z3, Z10
+	VADDPD       Z8, Z8, Z8
+	VMULPD       Z10, Z8, Z8
+	VCMPPD       $0x0e, Z8, Z9, K1
+	KMOVW        K1, R12
+	SHLL         $0x10, R12
+	ANDL         DI, R12
+	ORL          R12, (R10)
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x10, R9
+	SUBQ         $0x04, R10
+	ADDQ         $0x08, R10
+	DECQ         R11
+	JNZ          line2
+
+line2_done:
+skip2:
+	TESTL   $0xff000000, DI
+	JZ      skip3
+	MOVQ    DX, DX
+	MOVQ    SI, SI
+	VMOVUPD 192(AX), Z3
+	VMOVUPD 448(AX), Z4
+	VMOVUPD 704(AX), Z5
+	VMOVUPD 960(AX), Z6
+	VMOVUPD 192(CX), Z7
+	TESTQ   SI, SI
+	JLE     line3_done
+
+line3:
+	VMOVUPD      448(CX), Z8
+	VSUBPD       Z7, Z8, Z9
+	VPANDQ       Z0, Z9, Z9
+	VPANDQ       Z0, Z7, Z7
+	VPANDQ       Z0, Z8, Z10
+	VMAXPD       Z10, Z7, Z10
+	VMOVAPD      Z8, Z7
+	VBROADCASTSD (DX), Z8
+	VMULPD       Z4, Z8, Z8
+	VFMADD231PD  Z5, Z10, Z8
+	VFMADD231PD  Z6, Z9, Z8
+	VFMSUB231PD  Z2, Z8, Z9
+	VMAXPD       Z1, Z9, Z9
+	VMULPD       Z9, Z9, Z9
+	VSUBPD       Z10, Z3, Z10
+	VADDPD       Z8, Z8, Z8
+	VMULPD       Z10, Z8, Z8
+	VCMPPD       $0x0e, Z8, Z9, K1
+	KMOVW        K1, AX
+	SHLL         $0x18, AX
+	ANDL         DI, AX
+	ORL          AX, (BX)
 	ADDQ         $0x00000100, CX
 	ADDQ         $0x10, DX
 	SUBQ         $0x04, BX
 	ADDQ         $0x08, BX
 	DECQ         SI
-	JNZ          line
+	JNZ          line3
 
-line_done:
+line3_done:
+skip3:
 	VZEROUPPER
 	RET
 

@@ -29,6 +29,7 @@ type testCase struct {
 	start  Mark
 	screen Screen
 	steps  StepScreen
+	want   uint32 // lanes of ScreenSteps
 	ground []float64
 }
 
@@ -53,6 +54,7 @@ func newCase(seed uint64, n int) *testCase {
 		c.steps.Best[l], c.steps.Force[l] = 20*r.Float64(), r.Float64()
 		c.steps.Curve[l], c.steps.Slope[l] = r.Float64(), r.Float64()
 	}
+	c.want = r.Uint32() >> (seed % 3 * 8) // all vectors, or not the last
 	guarded := make([]float64, n+16)
 	for i := range guarded {
 		guarded[i] = math.NaN()
@@ -98,7 +100,7 @@ func (c *testCase) run() *outcome {
 	stepFlags := make([]uint32, steps+1)
 	stepFlags[steps] = 0xdeadbeef
 	if steps > 0 {
-		ScreenSteps(&c.steps, rows[1:steps+2], lines[:steps], stepFlags[:steps])
+		ScreenSteps(&c.steps, rows[1:steps+2], lines[:steps], stepFlags[:steps], c.want)
 	}
 	flags = append(flags, stepFlags...)
 	o.rows, o.marks, o.flags = rows, marks, flags
@@ -278,6 +280,38 @@ func TestScreens(t *testing.T) {
 		if n == 0 || n == 50*Lanes {
 			t.Errorf("screen %d: %d flags of %d, so that the test shows nothing", j, n, 50*Lanes)
 		}
+	}
+}
+
+// TestScreenSteps does so for steps, and for the lanes asked for only.
+func TestScreenSteps(t *testing.T) {
+	use(t, Portable)
+	c := newCase(9, 60)
+	rows, lines, flags := make([]Row, 58), make([]Line, 57), make([]uint32, 57)
+	TraceSlow(&c.slow, &c.start, c.ground, rows)
+	for i := range lines {
+		lines[i].First = 0.1 * float64(i%5)
+	}
+	const want = 0xfff0ffff
+	ScreenSteps(&c.steps, rows, lines, flags, want)
+	count := 0
+	for i := range lines {
+		for l := range Lanes {
+			d := math.Abs(rows[i+1][l] - rows[i][l])
+			top := max(math.Abs(rows[i][l]), math.Abs(rows[i+1][l]))
+			m := c.steps.Force[l]*lines[i].First + c.steps.Curve[l]*top + c.steps.Slope[l]*d
+			spare := max(0, m/2-d)
+			above := want>>l&1 == 1 && spare*spare > 2*m*(c.steps.Best[l]-top)
+			if got := flags[i]>>l&1 == 1; got != above {
+				t.Fatalf("step %d lane %d: flag %v, want %v", i, l, got, above)
+			}
+			if above {
+				count++
+			}
+		}
+	}
+	if count == 0 || count == len(lines)*Lanes {
+		t.Errorf("%d flags of %d, so that the test shows nothing", count, len(lines)*Lanes)
 	}
 }
 

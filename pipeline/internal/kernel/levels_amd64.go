@@ -78,8 +78,8 @@ func maximum(f func(top, values *float64, stride, n int)) func(*Row, *float64, i
 	return func(top *Row, values *float64, stride, n int) { f(&top[0], values, stride, n) }
 }
 
-func stepScreening(f func(s, rows, lines *float64, flags *uint32, n int)) func(*StepScreen, *Row, *Line, *uint32, int) {
-	return func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int) {
-		f(&s.Best[0], &rows[0], &lines.First, flags, n)
+func stepScreening(f func(s, rows, lines *float64, flags *uint32, n int, want uint32)) func(*StepScreen, *Row, *Line, *uint32, int, uint32) {
+	return func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32) {
+		f(&s.Best[0], &rows[0], &lines.First, flags, n, want)
 	}
 }

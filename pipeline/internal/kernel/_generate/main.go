@@ -319,7 +319,9 @@ func (l level) screen(squared bool) {
 				VMULPD(r, r, r)
 			}
 			l.and(l.at(values, 0, 0, v), mask, x)
-			l.compare(x, r, bits, sum)
+			l.compare(x, r, bits)
+			SHLL(operand.U8(l.width), sum)
+			ORL(bits, sum)
 		}
 		MOVL(sum, operand.Mem{Base: flags})
 		ADDQ(stride, values)
@@ -356,10 +358,8 @@ func (l level) greatest() {
 	RET()
 }
 
-// compare shifts one bit for each lane into sum, whether x > r. Lanes come last
-// first.
-func (l level) compare(x, r reg.VecVirtual, bits, sum reg.Register) {
-	SHLL(operand.U8(l.width), sum)
+// compare sets bits to one bit for each lane, whether x > r.
+func (l level) compare(x, r reg.VecVirtual, bits reg.Register) {
 	const greater = 14 // ordered, signalling
 	if l.width == 8 {
 		k := K()
@@ -369,56 +369,79 @@ func (l level) compare(x, r reg.VecVirtual, bits, sum reg.Register) {
 		VCMPPD(operand.U8(greater), r, x, x)
 		VMOVMSKPD(x, bits)
 	}
-	ORL(bits, sum)
 }
 
-// screenSteps compares what a step can reach with the best known.
+// screenSteps compares what a step can reach with the best known, a vector at a
+// time, without those that hold no lane asked for.
 func (l level) screenSteps() {
-	TEXT("screenSteps"+l.name, NOSPLIT, "func(s, rows, lines *float64, flags *uint32, n int)")
+	TEXT("screenSteps"+l.name, NOSPLIT, "func(s, rows, lines *float64, flags *uint32, n int, want uint32)")
 	Pragma("noescape")
 	Doc(fmt.Sprintf("screenSteps%s is screenStepsGeneric for vectors of %d lanes.", l.name, l.width))
-	s, rows := Load(Param("s"), GP64()), Load(Param("rows"), GP64())
-	lines, flags := Load(Param("lines"), GP64()), Load(Param("flags"), GP64())
-	n := Load(Param("n"), GP64())
-	mask := l.absolute()
-	zero, half, force := l.vector(), l.vector(), l.vector()
+	s := Load(Param("s"), GP64())
+	in := map[string]reg.Register{}
+	for _, name := range []string{"rows", "lines", "flags", "n"} {
+		in[name] = Load(Param(name), GP64())
+	}
+	want := Load(Param("want"), GP32())
+	mask, zero, half := l.absolute(), l.vector(), l.vector()
 	l.zero(zero)
-	word := GP64()
+	word, x := GP64(), XMM()
 	MOVQ(operand.U64(0x3fe0000000000000), word) // 0.5
-	x := XMM()
 	VMOVQ(word, x)
 	VBROADCASTSD(x, half)
-	bits, sum := GP32(), GP32()
-	input{}.loop("line", flags, n, nil, func() {
-		VBROADCASTSD(operand.Mem{Base: lines}, force)
-		XORL(sum, sum)
-		for v := lanes/l.width - 1; v >= 0; v-- {
-			u, end, d := l.vector(), l.vector(), l.vector()
-			VMOVUPD(l.at(rows, 0, 0, v), u)
-			VMOVUPD(l.at(rows, 1, 0, v), end)
-			VSUBPD(u, end, d)
-			l.and(mask, u, u)
-			l.and(mask, end, end)
-			l.and(mask, d, d)
-			VMAXPD(end, u, u) // the greater end
-			m := l.vector()
-			VMULPD(l.at(s, 1, 0, v), force, m)
-			VFMADD231PD(l.at(s, 2, 0, v), u, m)
-			VFMADD231PD(l.at(s, 3, 0, v), d, m) // the curvature
-			VFMSUB231PD(half, m, d)             // what it can exceed the chord by, half·m − d
-			VMAXPD(zero, d, d)
-			VMULPD(d, d, d)
-			VMOVUPD(l.at(s, 0, 0, v), end)
-			VSUBPD(u, end, end) // what is missing to best
-			VADDPD(m, m, m)
-			VMULPD(end, m, m)
-			l.compare(d, m, bits, sum)
+	for v := range lanes / l.width {
+		next := fmt.Sprintf("skip%d", v)
+		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
+		JZ(operand.LabelRef(next))
+		l.screenVector(s, in, want, v, mask, zero, half)
+		Label(next)
+	}
+	VZEROUPPER()
+	RET()
+}
+
+func (l level) screenVector(s reg.Register, in map[string]reg.Register, want reg.Register, v int, mask, zero, half reg.VecVirtual) {
+	rows, lines, flags, n := GP64(), GP64(), GP64(), GP64()
+	MOVQ(in["rows"], rows)
+	MOVQ(in["lines"], lines)
+	MOVQ(in["flags"], flags)
+	MOVQ(in["n"], n)
+	var c [4]reg.VecVirtual
+	for i := range c {
+		c[i] = l.vector()
+		VMOVUPD(l.at(s, i, 0, v), c[i])
+	}
+	best, force, curve, slope := c[0], c[1], c[2], c[3]
+	u, bits := l.vector(), GP32()
+	VMOVUPD(l.at(rows, 0, 0, v), u)
+	input{}.loop(fmt.Sprintf("line%d", v), flags, n, nil, func() {
+		end, d, m := l.vector(), l.vector(), l.vector()
+		VMOVUPD(l.at(rows, 1, 0, v), end)
+		VSUBPD(u, end, d)
+		l.and(mask, d, d)
+		l.and(mask, u, u)
+		top := l.vector()
+		l.and(mask, end, top)
+		VMAXPD(top, u, top) // the greater end
+		VMOVAPD(end, u)
+		VBROADCASTSD(operand.Mem{Base: lines}, m)
+		VMULPD(force, m, m)
+		VFMADD231PD(curve, top, m)
+		VFMADD231PD(slope, d, m) // the curvature
+		VFMSUB231PD(half, m, d)  // what u can exceed the chord by: half·m − d
+		VMAXPD(zero, d, d)
+		VMULPD(d, d, d)
+		VSUBPD(top, best, top) // what is missing to best
+		VADDPD(m, m, m)
+		VMULPD(top, m, m)
+		l.compare(d, m, bits)
+		if v > 0 {
+			SHLL(operand.U8(v*l.width), bits)
 		}
-		MOVL(sum, operand.Mem{Base: flags})
+		ANDL(want, bits)
+		ORL(bits, operand.Mem{Base: flags})
 		ADDQ(operand.U32(row), rows)
 		ADDQ(operand.Imm(16), lines)
 		SUBQ(operand.Imm(4), flags) // the loop moves on by 8
 	})
-	VZEROUPPER()
-	RET()
 }
