@@ -24,6 +24,7 @@ type motion struct {
 	// What bounds on |u| are made of: of each block of steps and each step the
 	// greatest |a|, ends included, and the greatest |a' − a|.
 	blockLines, stepLines []kernel.Line
+	strides               [len(strides)]stride
 	search
 }
 
@@ -38,7 +39,8 @@ type search struct {
 	stepScreen kernel.StepScreen
 	seen       [blockSteps]uint32 // of each step of a block: the lanes that it is done with
 	screen     kernel.Screen
-	top        kernel.Row // the greatest peak of each lane
+	top        kernel.Row  // the greatest peak of each lane
+	start      kernel.Mark // the state that a block of strides is marched again from
 	best       [lanes]float64
 }
 

@@ -8,6 +8,7 @@ import "math"
 type slow struct {
 	index   int
 	phase   float64
+	damping float64
 	exact   recurrence
 	inverse float64 // 1/exact.uv
 	eq      difference
@@ -56,7 +57,7 @@ func newSlow(index int, phase, damping float64) (slow, bool) {
 	}
 	r := respond(phase, damping)
 	return slow{
-		index: index, phase: phase,
+		index: index, phase: phase, damping: damping,
 		exact: r.recurrence(), inverse: 1 / r.impulse.hi, eq: r.difference(),
 		series: newSeries(phase, damping), ringing: newRinging(damping),
 		reach: reach, growth: growth,
@@ -125,43 +126,28 @@ func (o *slow) within(best, u, v, end, vEnd, a, next float64) float64 {
 		best, _, _ = o.series.peak(best, u, v, a, next-a)
 		return best
 	}
-	guess, found := parabolaRest(v, w, vEnd)
-	if found && o.cubicBound(u, v, w, vEnd, wEnd, curve, guess) <= best {
+	h := newHermite(v, w, vEnd, wEnd)
+	t := h.rest(vEnd)
+	if h.reach(u, t)+float64(o.fourth(w, wEnd, curve)*hermiteError) <= best {
 		return best
 	}
 	var p polynomial
 	o.series.expand(&p, u, v, a, next-a)
-	_, top := p.rest(guess, 0, 1, vEnd)
+	_, top := p.rest(t, 0, 1, vEnd)
 	return max(best, math.Abs(top))
 }
 
-// parabolaRest returns the time from 0 to 1 at which a parabola with the values
-// v at 0 and vEnd, of opposite sign, at 1 and with the slope w at 0 is zero. If
-// rounding prevents it, the chord takes the parabola's place and found is false.
-func parabolaRest(v, w, vEnd float64) (t float64, found bool) {
-	bend := (vEnd - v) - w
-	root := math.Sqrt(math.FMA(w, w, -float64(4*float64(bend*v))))
-	t = -2 * v / (w + math.Copysign(root, w))
-	if t > 0 && t < 1 {
-		return t, true
-	}
-	return v / (v - vEnd), false
-}
-
-// cubicBound returns a bound on |u| where the velocity of the step is zero. The
-// parabola with the velocities of both ends and the acceleration of the start
-// is off by at most K·t²(1 − t)/6, K = max|d²ü/dt²|, and the cubic that it is
-// the derivative of by K/72 therefore. The cubic is greatest where the parabola
-// is zero, rest. ü is a free vibration with |ü| <= curve, and its change differs
-// from its chord's by at most K/2, so that
+// fourth returns a bound on the fourth derivative of the velocity in a step, with
+// ü from w to wEnd at its ends and |ü| <= curve. ü is a free vibration. Its first
+// derivative differs from its chord's by at most half the second, K, so that
 //
-//	K·(1 − ζφ) <= 2ζφ·|wEnd − w| + φ²·curve.
-func (o *slow) cubicBound(u, v, w, vEnd, wEnd, curve, rest float64) float64 {
-	linear, square := o.series.linear, o.series.square
-	k := (float64(linear*math.Abs(wEnd-w)) + float64(square*curve)) / (1 - float64(linear*0.5))
-	third := float64(((vEnd - v) - w) / 3)
-	cubic := math.FMA(math.FMA(math.FMA(third, rest, float64(w*0.5)), rest, v), rest, u)
-	return math.Abs(cubic) + float64(k*(1./72))
+//	K·(1 − ζφ) <= 2ζφ·|wEnd − w| + φ²·curve,
+//
+// and the third is 2ζφ times the second and φ² times the first.
+func (o *slow) fourth(w, wEnd, curve float64) float64 {
+	linear, square, chord := o.series.linear, o.series.square, math.Abs(wEnd-w)
+	k := (float64(linear*chord) + float64(square*curve)) / (1 - float64(linear*0.5))
+	return float64(linear*k) + float64(square*(chord+float64(k*0.5)))
 }
 
 // velocity returns the velocity at a sample from the displacement u there and

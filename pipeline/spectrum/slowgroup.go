@@ -9,9 +9,16 @@ import (
 
 // slowGroup is a number of slow oscillators, one to a lane. Lanes without one
 // rest at zero.
+//
+// With a stride, the marks of all blocks but the last hold displacement and
+// velocity, and their peaks |u| between strides; the last block is marched step
+// by step.
 type slowGroup struct {
 	members []slow
 	eq      *kernel.Slow
+	screen  *kernel.StepScreen // all but Best
+	stride  *kernel.Stride     // nil for steps
+	level   int                // of strides
 }
 
 // newSlowGroups splits a list into groups of as many as there are lanes.
@@ -19,15 +26,38 @@ func newSlowGroups(list []slow) []slowGroup {
 	var groups []slowGroup
 	for len(list) > 0 {
 		n := min(lanes, len(list))
-		g := slowGroup{list[:n:n], new(kernel.Slow)}
+		g := slowGroup{members: list[:n:n], eq: new(kernel.Slow), screen: new(kernel.StepScreen)}
 		for l := range g.members {
 			q := &g.members[l].eq
 			g.eq.Decay[l], g.eq.Stiffness[l] = 1-q.loss, q.stiffness
 			g.eq.Middle[l], g.eq.Oldest[l] = q.middle, q.oldest
 		}
+		g.screenSteps()
 		groups, list = append(groups, g), list[n:]
 	}
 	return groups
+}
+
+// newStrideGroups does so for oscillators of one of strides.
+func newStrideGroups(list []slow, level int) []slowGroup {
+	groups := newSlowGroups(list)
+	for i := range groups {
+		g := &groups[i]
+		g.stride, g.level = new(kernel.Stride), level
+		for l := range g.members {
+			o := &g.members[l]
+			setStride(g.stride, l, o.phase, o.damping, strides[level])
+		}
+	}
+	return groups
+}
+
+// unit returns the unit of the peaks of a lane.
+func (g *slowGroup) unit(l int) float64 {
+	if g.stride != nil {
+		return 1
+	}
+	return math.Abs(g.members[l].eq.scale)
 }
 
 // solve puts the D of the members into dst, in units of the motion.
@@ -51,6 +81,10 @@ func (g *slowGroup) solve(dst []float64, m *motion) {
 
 // march sets the marks of all blocks.
 func (g *slowGroup) march(m *motion) {
+	if g.stride != nil {
+		g.marchStrides(m)
+		return
+	}
 	start := &m.marks[0]
 	start.X, start.Y = kernel.Row{}, kernel.Row{}
 	for l := range g.members {
@@ -59,6 +93,44 @@ func (g *slowGroup) march(m *motion) {
 	}
 	for b := range m.blocks() {
 		kernel.MarchSlow(g.eq, &m.marks[b], &m.marks[b+1], m.slowSamples(b))
+	}
+}
+
+func (g *slowGroup) marchStrides(m *motion) {
+	start := &m.marks[0]
+	start.X, start.Y = kernel.Row{}, kernel.Row{}
+	inputs, n := m.strides[g.level].inputs, blockSteps/strides[g.level]
+	last := m.blocks() - 1
+	for b := range last {
+		kernel.MarchStride(g.stride, &m.marks[b], &m.marks[b+1], inputs[b*n:(b+1)*n])
+	}
+	mark := &m.marks[last]
+	from, to := m.block(last)
+	g.restart(m, last)
+	kernel.MarchSlow(g.eq, &m.start, &m.marks[last+1], m.a[from:to+1])
+	for l := range g.members {
+		scale := math.Abs(g.members[l].eq.scale)
+		mark.Peak[l] = max(math.Abs(mark.X[l]), float64(scale*m.start.Peak[l]))
+	}
+	for l := len(g.members); l < lanes; l++ {
+		mark.Peak[l] = 0
+	}
+}
+
+// restart sets start to the state of the difference equation a step into a
+// block, from displacement and velocity at its start.
+func (g *slowGroup) restart(m *motion, b int) {
+	from, _ := m.block(b)
+	a, next := m.a[from], m.a[from+1]
+	mark := &m.marks[b]
+	m.start.X, m.start.Y = kernel.Row{}, kernel.Row{}
+	for l := range g.members {
+		o := &g.members[l]
+		r := &o.exact
+		u := mark.X[l]
+		forced := float64(r.pu*a) + float64(r.qu*next)
+		change := (float64(r.uu*u) + float64(r.uv*mark.Y[l])) + forced
+		m.start.X[l], m.start.Y[l] = (u+change)/o.eq.scale, change/o.eq.scale
 	}
 }
 
@@ -73,7 +145,7 @@ func (g *slowGroup) sampled(m *motion) {
 		m.best[l] = 0
 	}
 	for l := range g.members {
-		m.best[l] = float64(math.Abs(g.members[l].eq.scale) * m.top[l])
+		m.best[l] = float64(g.unit(l) * m.top[l])
 	}
 	kernel.ScreenPeaks(&m.screen, marks, m.blockLines, m.flags)
 }
@@ -81,9 +153,13 @@ func (g *slowGroup) sampled(m *motion) {
 // refine raises best to the greatest |u| of the steps, beginning with the blocks
 // of the greatest sample, which usually settle the others.
 func (g *slowGroup) refine(m *motion) {
+	m.stepScreen = *g.screen
 	live := ^uint32(0) >> (lanes - len(g.members))
 	for l := range g.members {
 		o := &g.members[l]
+		if g.stride != nil {
+			break // the first step is one of block 0
+		}
 		first := float64(math.Abs(o.eq.scale) * math.Abs(m.marks[0].X[l]))
 		if o.bound(first, math.Abs(m.a[0]), math.Abs(m.a[1])) > m.best[l] {
 			m.best[l], _, _ = o.series.peak(m.best[l], 0, 0, m.a[0], m.a[1]-m.a[0])
@@ -94,37 +170,46 @@ func (g *slowGroup) refine(m *motion) {
 		g.enter(m, b, m.done[b], true)
 	}
 	g.limit(m)
-	kernel.ScreenPeaks(&m.screen, m.marks[:m.blocks()], m.blockLines, m.flags)
+	lines := m.blockLines
+	if g.stride != nil {
+		lines = m.strides[g.level].lines
+	}
+	kernel.ScreenPeaks(&m.screen, m.marks[:m.blocks()], lines, m.flags)
 	for b, flags := range m.flags {
 		g.enter(m, b, flags&live&^m.done[b], false)
 	}
 }
 
 // limit sets the screen so that a greatest sampled |u| passes if the bound of
-// func bounds exceeds best.
+// func bounds, or of func strideBound, exceeds best.
 func (g *slowGroup) limit(m *motion) {
 	for l := range g.members {
 		o := &g.members[l]
+		if g.stride != nil {
+			over := float64(o.phase * float64(strides[g.level]))
+			m.screen.Limit[l] = float64(m.best[l] * strideBound(over, o.damping))
+			m.screen.First[l] = 1
+			continue
+		}
 		scale := math.Abs(o.eq.scale)
 		m.screen.Limit[l] = m.best[l] / float64(o.growth*scale)
 		m.screen.First[l] = o.reach / scale
 	}
 }
 
-// limitSteps sets the screen of steps: |ü| within a step is at most M with
+// screenSteps sets what screens steps but best: |ü| within a step is at most M
+// with
 //
 //	M·(1 − ζφ − φ²/8) = max|a| + 2ζφ·|end − u| + φ²·max(|u|, |end|),
 //
 // because |u̇| stays within |end − u| + M/2 and |u| within M/8 of its greater end.
-func (g *slowGroup) limitSteps(m *motion) {
+func (g *slowGroup) screenSteps() {
 	for l := range g.members {
 		o := &g.members[l]
-		scale := math.Abs(o.eq.scale)
 		linear, square := o.series.linear, o.series.square
 		share := 1 / ((1 - float64(linear*0.5)) - float64(square*0.125))
-		m.stepScreen.Best[l] = m.best[l] / scale
-		m.stepScreen.Force[l] = share / scale
-		m.stepScreen.Curve[l], m.stepScreen.Slope[l] = float64(share*square), float64(share*linear)
+		g.screen.Force[l] = share / math.Abs(o.eq.scale)
+		g.screen.Curve[l], g.screen.Slope[l] = float64(share*square), float64(share*linear)
 	}
 }
 
@@ -134,17 +219,21 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	if flags == 0 {
 		return
 	}
-	_, to := m.block(b)
-	a := m.slowSamples(b)
-	rows, stepFlags := m.rows[:len(a)-1], m.stepFlags[:len(a)-2]
-	rows[0] = m.marks[b].X
-	kernel.TraceSlow(g.eq, &m.marks[b], a, rows[1:])
-	from := to - (len(rows) - 1)
+	from, to := m.block(b)
+	if g.stride == nil {
+		from = max(from, 1)
+	}
+	a := m.a[from : to+1]
+	rows, stepFlags := m.rows[:len(a)], m.stepFlags[:len(a)-1]
+	g.trace(m, b, from, rows)
 	m.seen = [blockSteps]uint32{}
 	if first {
 		g.enterTop(m, rows, a, flags)
 	}
-	g.limitSteps(m)
+	for left := flags; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		m.stepScreen.Best[l] = m.best[l] / math.Abs(g.members[l].eq.scale)
+	}
 	kernel.ScreenSteps(&m.stepScreen, rows, m.stepLines[from:to], stepFlags, flags)
 	for k := range stepFlags {
 		for left := stepFlags[k] &^ m.seen[k]; left != 0; left &= left - 1 {
@@ -153,6 +242,21 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 			m.best[l] = o.between(m.best[l], rows, l, k, a)
 		}
 	}
+}
+
+// trace sets rows to u at the samples of a block, of which from is the first.
+func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row) {
+	if g.stride == nil {
+		rows[0] = m.marks[b].X
+		kernel.TraceSlow(g.eq, &m.marks[b], m.a[from-1:from+len(rows)], rows[1:])
+		return
+	}
+	g.restart(m, b)
+	for l := range g.members {
+		rows[0][l] = m.marks[b].X[l] / g.members[l].eq.scale
+	}
+	rows[1] = m.start.X
+	kernel.TraceSlow(g.eq, &m.start, m.a[from:from+len(rows)], rows[2:])
 }
 
 // enterTop looks into the steps on both sides of the greatest sample, which
@@ -173,9 +277,8 @@ func (g *slowGroup) enterTop(m *motion, rows []kernel.Row, a []float64, flags ui
 	}
 }
 
-// between is step for step k of the rows of lane l. Row k is the state at sample
-// k+1 of a.
+// between is step for step k of the rows of lane l. Row k is u at sample k of a.
 func (o *slow) between(best float64, rows []kernel.Row, l, k int, a []float64) float64 {
 	u, end := float64(o.eq.scale*rows[k][l]), float64(o.eq.scale*rows[k+1][l])
-	return o.step(best, u, end, a[k+1], a[k+2])
+	return o.step(best, u, end, a[k], a[k+1])
 }

@@ -26,6 +26,7 @@ type Solver struct {
 	stepS       float64
 	oscillators int
 	slow        []slowGroup
+	strides     [len(strides)]bool // those in use
 	fast        []fastGroup
 	scratch     *sync.Pool // of *motion
 }
@@ -54,14 +55,20 @@ func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver,
 			return nil, fmt.Errorf("oscillator %d: %w", i+1, err)
 		}
 	}
-	s.slow, s.fast = newSlowGroups(list.slow), newFastGroups(list.fast)
+	for i, strided := range list.strided {
+		s.slow = append(s.slow, newStrideGroups(strided, i)...)
+		s.strides[i] = len(strided) > 0
+	}
+	s.slow = append(s.slow, newSlowGroups(list.slow)...)
+	s.fast = newFastGroups(list.fast)
 	return s, nil
 }
 
 // forms are oscillators sorted by the way they march.
 type forms struct {
-	slow []slow
-	fast []fast
+	strided [len(strides)][]slow
+	slow    []slow
+	fast    []fast
 }
 
 func (s *Solver) add(list *forms, index int, o Oscillator) error {
@@ -79,10 +86,12 @@ func (s *Solver) add(list *forms, index int, o Oscillator) error {
 	phase := float64(Omega(o.PeriodS) * s.stepS)
 	if s.method == NewmarkAverage {
 		list.slow = append(list.slow, newNewmark(index, phase, o.Damping))
-	} else if one, ok := newSlow(index, phase, o.Damping); ok {
-		list.slow = append(list.slow, one)
-	} else {
+	} else if one, ok := newSlow(index, phase, o.Damping); !ok {
 		list.fast = append(list.fast, newFast(index, phase, o.Damping))
+	} else if i := strideOf(phase, o.Damping); i >= 0 {
+		list.strided[i] = append(list.strided[i], one)
+	} else {
+		list.slow = append(list.slow, one)
 	}
 	return nil
 }
@@ -125,6 +134,11 @@ func (s *Solver) SD(dst, acceleration []float64) []float64 {
 			dst[i] = known
 		}
 		return dst
+	}
+	for i, used := range s.strides {
+		if used {
+			m.loadStride(i)
+		}
 	}
 	for i := range s.slow {
 		s.slow[i].solve(dst, m)

@@ -84,6 +84,9 @@ func BenchmarkMarch(b *testing.B) {
 			var m motion
 			m.load(shaken(1, n))
 			for b.Loop() {
+				for i := range strides {
+					m.loadStride(i)
+				}
 				for i := range s.slow {
 					s.slow[i].march(&m)
 				}

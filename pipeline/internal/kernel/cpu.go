@@ -19,6 +19,8 @@ type level struct {
 	screen        func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
 	screenSquares func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
 	screenSteps   func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32)
+	marchStride   func(q *Stride, from, to *Mark, inputs *Input, steps int)
+	mix           func(inputs, shares *Input, ground *float64, stride, n int)
 	greatest      func(top *Row, values *float64, stride, n int)
 }
 
@@ -28,6 +30,7 @@ var portable = level{
 	marchFast: marchFastGeneric, traceFast: traceFastGeneric,
 	screen: screenGeneric, screenSquares: screenSquaresGeneric,
 	screenSteps: screenStepsGeneric, greatest: greatestGeneric,
+	marchStride: marchStrideGeneric, mix: mixGeneric,
 }
 
 // levels are the kernels that this processor runs, the fastest first.

@@ -178,3 +178,44 @@ func greatestGeneric(top *Row, values *float64, stride, n int) {
 	}
 	*top = sum
 }
+
+func marchStrideGeneric(q *Stride, from, to *Mark, inputs *Input, steps int) {
+	list := unsafe.Slice(inputs, steps)
+	for l := 0; l < Lanes; l += 2 {
+		u0, u1, v0, v1 := from.X[l], from.X[l+1], from.Y[l], from.Y[l+1]
+		p0, p1 := magnitude(u0), magnitude(u1)
+		for i := range list {
+			x := list[i][0]
+			f0, f1 := float64(q.Weights[0].U[l]*x), float64(q.Weights[0].U[l+1]*x)
+			g0, g1 := float64(q.Weights[0].V[l]*x), float64(q.Weights[0].V[l+1]*x)
+			for k := 1; k < Inputs; k++ {
+				x, w := list[i][k], &q.Weights[k]
+				f0, f1 = math.FMA(w.U[l], x, f0), math.FMA(w.U[l+1], x, f1)
+				g0, g1 = math.FMA(w.V[l], x, g0), math.FMA(w.V[l+1], x, g1)
+			}
+			f0, f1 = math.FMA(q.UU[l], u0, math.FMA(q.UV[l], v0, f0)), math.FMA(q.UU[l+1], u1, math.FMA(q.UV[l+1], v1, f1))
+			g0, g1 = math.FMA(q.VU[l], u0, math.FMA(q.VV[l], v0, g0)), math.FMA(q.VU[l+1], u1, math.FMA(q.VV[l+1], v1, g1))
+			u0, u1, v0, v1 = u0+f0, u1+f1, v0+g0, v1+g1
+			p0, p1 = max(p0, magnitude(u0)), max(p1, magnitude(u1))
+		}
+		to.X[l], to.X[l+1], to.Y[l], to.Y[l+1] = u0, u1, v0, v1
+		from.Peak[l], from.Peak[l+1] = math.Float64frombits(p0>>1), math.Float64frombits(p1>>1)
+	}
+}
+
+func mixGeneric(inputs, shares *Input, ground *float64, stride, n int) {
+	out, c := unsafe.Slice(inputs, n), unsafe.Slice(shares, stride+1)
+	a := unsafe.Slice(ground, n*stride+1)
+	for i := range out {
+		sum := &out[i]
+		for k := range sum {
+			sum[k] = float64(c[0][k] * a[i*stride])
+		}
+		for j := 1; j <= stride; j++ {
+			x, share := a[i*stride+j], &c[j]
+			for k := range sum {
+				sum[k] = math.FMA(share[k], x, sum[k])
+			}
+		}
+	}
+}

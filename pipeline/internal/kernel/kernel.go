@@ -29,6 +29,46 @@ type Fast struct{ YY, YZ, ZY, ZZ, Jump Row }
 // greatest measure of a march that began with it.
 type Mark struct{ X, Y, Peak Row }
 
+// Inputs is the number of inputs of a stride, and Input holds those of one, the
+// rest being of no account: sixteen fill whole vectors.
+const Inputs = 11
+
+type Input [16]float64
+
+// Stride holds the coefficients of a step over several samples, with the inputs
+// f of the step:
+//
+//	u' = u + UU·u + UV·v + Σ Weights[k].U·f[k]
+//	v' = v + VU·u + VV·v + Σ Weights[k].V·f[k]
+type Stride struct {
+	UU, UV, VU, VV Row
+	Weights        [Inputs]struct{ U, V Row }
+}
+
+// MarchStride takes oscillators from the state from.X, from.Y = (u, v) through
+// one step for each of inputs, sets to.X and to.Y to the state at the end and
+// from.Peak to the greatest |u| between steps, both ends included. to may be
+// from. Of numbers that are not finite it makes what MarchSlow makes.
+func MarchStride(q *Stride, from, to *Mark, inputs []Input) {
+	if len(inputs) == 0 {
+		from.Peak, to.X, to.Y = absolute(&from.X), from.X, from.Y
+		return
+	}
+	current.marchStride(q, from, to, &inputs[0], len(inputs))
+}
+
+// Mix sets inputs[i] to Σ shares[j]·a[i·m + j] with j from 0 to m = len(shares)
+// − 1, number by number. It panics unless m > 0 and len(a) is len(inputs)·m + 1.
+func Mix(inputs, shares []Input, a []float64) {
+	m := len(shares) - 1
+	if m < 1 || len(a) != len(inputs)*m+1 {
+		panic("kernel: number of samples is not that of inputs")
+	}
+	if len(inputs) > 0 {
+		current.mix(&inputs[0], &shares[0], &a[0], m, len(inputs))
+	}
+}
+
 // Line is a pair of numbers of one row of values, for a Screen.
 type Line struct{ First, Second float64 }
 

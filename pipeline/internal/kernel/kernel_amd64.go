@@ -39,6 +39,16 @@ func screenSquaresAVX2(s *float64, values *float64, stride int, lines *float64, 
 //go:noescape
 func screenStepsAVX2(s *float64, rows *float64, lines *float64, flags *uint32, n int, want uint32)
 
+// marchStrideAVX2 is marchStrideGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func marchStrideAVX2(q *float64, weights *float64, from *float64, to *float64, inputs *float64, steps int)
+
+// mixAVX2 is mixGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func mixAVX2(inputs *float64, shares *float64, ground *float64, stride int, n int)
+
 // greatestAVX2 is greatestGeneric for vectors of 4 lanes.
 //
 //go:noescape
@@ -78,6 +88,16 @@ func screenSquaresAVX512(s *float64, values *float64, stride int, lines *float64
 //
 //go:noescape
 func screenStepsAVX512(s *float64, rows *float64, lines *float64, flags *uint32, n int, want uint32)
+
+// marchStrideAVX512 is marchStrideGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func marchStrideAVX512(q *float64, weights *float64, from *float64, to *float64, inputs *float64, steps int)
+
+// mixAVX512 is mixGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func mixAVX512(inputs *float64, shares *float64, ground *float64, stride int, n int)
 
 // greatestAVX512 is greatestGeneric for vectors of 8 lanes.
 //

@@ -30,6 +30,8 @@ type testCase struct {
 	screen Screen
 	steps  StepScreen
 	want   uint32 // lanes of ScreenSteps
+	stride Stride
+	shares []Input
 	ground []float64
 }
 
@@ -54,6 +56,19 @@ func newCase(seed uint64, n int) *testCase {
 		c.steps.Best[l], c.steps.Force[l] = 20*r.Float64(), r.Float64()
 		c.steps.Curve[l], c.steps.Slope[l] = r.Float64(), r.Float64()
 	}
+	for l := range Lanes {
+		c.stride.UU[l], c.stride.UV[l] = -0.2*r.Float64(), 1+r.Float64()
+		c.stride.VU[l], c.stride.VV[l] = -0.2*r.Float64(), -0.2*r.Float64()
+		for k := range c.stride.Weights {
+			c.stride.Weights[k].U[l], c.stride.Weights[k].V[l] = r.NormFloat64(), r.NormFloat64()
+		}
+	}
+	c.shares = make([]Input, 2+seed%5)
+	for j := range c.shares {
+		for k := range c.shares[j] {
+			c.shares[j][k] = r.NormFloat64()
+		}
+	}
 	c.want = r.Uint32() >> (seed % 3 * 8) // all vectors, or not the last
 	guarded := make([]float64, n+16)
 	for i := range guarded {
@@ -69,6 +84,8 @@ func newCase(seed uint64, n int) *testCase {
 // outcome is all that the functions of this package make of a case.
 type outcome struct {
 	slow, slowEnd, fast, fastEnd Mark
+	stride, strideEnd            Mark
+	inputs                       []Input
 	rows                         []Row
 	marks                        []Mark
 	flags                        []uint32
@@ -76,7 +93,7 @@ type outcome struct {
 }
 
 func (c *testCase) run() *outcome {
-	o := &outcome{slow: c.start, fast: c.start}
+	o := &outcome{slow: c.start, fast: c.start, stride: c.start}
 	steps := max(len(c.ground)-2, 0)
 	// Guards round what the kernels write.
 	rows, marks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
@@ -103,6 +120,12 @@ func (c *testCase) run() *outcome {
 		ScreenSteps(&c.steps, rows[1:steps+2], lines[:steps], stepFlags[:steps], c.want)
 	}
 	flags = append(flags, stepFlags...)
+	m := len(c.shares) - 1
+	o.inputs = make([]Input, max(n-1, 0)/m+2)
+	if strides := o.inputs[1 : len(o.inputs)-1]; n > 0 {
+		Mix(strides, c.shares, c.ground[:len(strides)*m+1])
+		MarchStride(&c.stride, &o.stride, &o.strideEnd, strides)
+	}
 	o.rows, o.marks, o.flags = rows, marks, flags
 	return o
 }
@@ -138,7 +161,17 @@ func (o *outcome) compare(t *testing.T, label string, want *outcome) {
 	}
 	check("fast end x", &o.fastEnd.X, &want.fastEnd.X)
 	check("fast end y", &o.fastEnd.Y, &want.fastEnd.Y)
+	check("stride end x", &o.strideEnd.X, &want.strideEnd.X)
+	check("stride end y", &o.strideEnd.Y, &want.strideEnd.Y)
+	for i := range want.inputs {
+		for k, x := range want.inputs[i] {
+			if !same(o.inputs[i][k], x) {
+				t.Fatalf("%s: input %d of stride %d = %v, want %v", label, k, i-1, o.inputs[i][k], x)
+			}
+		}
+	}
 	if finite {
+		check("stride peak", &o.stride.Peak, &want.stride.Peak)
 		check("slow peak", &o.slow.Peak, &want.slow.Peak)
 		check("fast peak", &o.fast.Peak, &want.fast.Peak)
 		check("greatest peak", &o.top, &want.top)
@@ -221,7 +254,25 @@ func TestMarchIsItsDefinition(t *testing.T) {
 			t.Fatalf("%s of lane %d = %v, want %v", what, l, got, want)
 		}
 	}
+	m := len(c.shares) - 1
 	for l := range Lanes {
+		s := &c.stride
+		su, sv, most := c.start.X[l], c.start.Y[l], math.Abs(c.start.X[l])
+		for i := 0; (i+1)*m < len(c.ground); i++ {
+			f, g := s.UU[l]*su+s.UV[l]*sv, s.VU[l]*su+s.VV[l]*sv
+			for k, w := range s.Weights {
+				x := 0.0
+				for j, share := range c.shares {
+					x += share[k] * c.ground[i*m+j]
+				}
+				f, g = f+w.U[l]*x, g+w.V[l]*x
+			}
+			su, sv = su+f, sv+g
+			most = max(most, math.Abs(su))
+		}
+		near("stride u", l, o.strideEnd.X[l], su)
+		near("stride v", l, o.strideEnd.Y[l], sv)
+		near("stride peak", l, o.stride.Peak[l], most)
 		q := &c.slow
 		u, w, peak := c.start.X[l], c.start.Y[l], math.Abs(c.start.X[l])
 		for i, a := range c.ground[2:] {

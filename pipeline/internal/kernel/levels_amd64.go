@@ -19,6 +19,8 @@ func vectorLevels() []level {
 			screenSquares: screening(screenSquaresAVX512),
 			screenSteps:   stepScreening(screenStepsAVX512),
 			greatest:      maximum(greatestAVX512),
+			marchStride:   strideMarch(marchStrideAVX512),
+			mix:           mixing(mixAVX512),
 		})
 	}
 	if cpu.X86.HasAVX2 && cpu.X86.HasFMA {
@@ -32,6 +34,8 @@ func vectorLevels() []level {
 			screenSquares: screening(screenSquaresAVX2),
 			screenSteps:   stepScreening(screenStepsAVX2),
 			greatest:      maximum(greatestAVX2),
+			marchStride:   strideMarch(marchStrideAVX2),
+			mix:           mixing(mixAVX2),
 		})
 	}
 	return list
@@ -81,5 +85,17 @@ func maximum(f func(top, values *float64, stride, n int)) func(*Row, *float64, i
 func stepScreening(f func(s, rows, lines *float64, flags *uint32, n int, want uint32)) func(*StepScreen, *Row, *Line, *uint32, int, uint32) {
 	return func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32) {
 		f(&s.Best[0], &rows[0], &lines.First, flags, n, want)
+	}
+}
+
+func strideMarch(f func(q, weights, from, to, inputs *float64, steps int)) func(*Stride, *Mark, *Mark, *Input, int) {
+	return func(q *Stride, from, to *Mark, inputs *Input, steps int) {
+		f(&q.UU[0], &q.Weights[0].U[0], &from.X[0], &to.X[0], &inputs[0], steps)
+	}
+}
+
+func mixing(f func(inputs, shares, ground *float64, stride, n int)) func(*Input, *Input, *float64, int, int) {
+	return func(inputs, shares *Input, ground *float64, stride, n int) {
+		f(&inputs[0], &shares[0], ground, stride, n)
 	}
 }
