@@ -12,7 +12,7 @@ import (
 // bound by which the solver would have left it out.
 func TestBlockBounds(t *testing.T) {
 	for seed := range uint64(6) {
-		var m motion
+		m := newMotion()
 		a := seededMotion(seed, 5*blockSteps)
 		switch seed {
 		case 0:
@@ -33,10 +33,10 @@ func TestBlockBounds(t *testing.T) {
 				phase := Omega(ratio)
 				worst := 0.0
 				if o, ok := newSlow(0, phase, damping); ok {
-					worst = slowExcess(&m, &o)
+					worst = slowExcess(m, &o)
 				} else {
 					o := newFast(0, phase, damping)
-					worst = fastExcess(&m, &o)
+					worst = fastExcess(m, &o)
 				}
 				if worst > 1+1e-12 {
 					t.Errorf("seed %d T/dt %g damping %g: |u| is %.6g of a block's bound", seed, ratio, damping, worst)

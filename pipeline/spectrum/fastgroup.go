@@ -66,19 +66,19 @@ func (g *fastGroup) march(m *motion) {
 func (g *fastGroup) refine(m *motion) {
 	live := ^uint32(0) >> (lanes - len(g.members))
 	marks := m.marks[:m.blocks()]
-	kernel.GreatestPeaks(&m.top, marks)
-	m.screen = kernel.Screen{}
+	kernel.GreatestPeaks(m.top, marks)
+	*m.screen = kernel.Screen{}
 	for l := range m.top {
 		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
 		m.best[l] = 0
 	}
-	kernel.ScreenPeaks(&m.screen, marks, m.blockLines, m.flags)
+	kernel.ScreenPeaks(m.screen, marks, m.blockLines, m.flags)
 	for b := range m.flags {
 		m.done[b] = m.flags[b] & live
 		g.enter(m, b, m.done[b], true)
 	}
 	g.limit(m)
-	kernel.ScreenSquares(&m.screen, marks, m.blockLines, m.flags)
+	kernel.ScreenSquares(m.screen, marks, m.blockLines, m.flags)
 	for b, flags := range m.flags {
 		g.enter(m, b, flags&live&^m.done[b], false)
 	}
@@ -107,7 +107,7 @@ func (g *fastGroup) enter(m *motion, b int, flags uint32, first bool) {
 		g.sampled(m, from, states, flags)
 	}
 	g.limit(m)
-	kernel.ScreenSquares(&m.screen, states, m.stepLines[from:to], stepFlags)
+	kernel.ScreenSquares(m.screen, states, m.stepLines[from:to], stepFlags)
 	for k := range states {
 		for left := stepFlags[k] & flags; left != 0; left &= left - 1 {
 			l := bits.TrailingZeros32(left)

@@ -28,20 +28,31 @@ type motion struct {
 	search
 }
 
-// search is the work space of one block of oscillators.
+// search is the work space of one block of oscillators. What kernels use is
+// allocated by itself, which aligns it to whole vectors: fields in the middle of
+// a struct need not be, and vectors across two cache lines cost twice.
 type search struct {
 	marks      []kernel.Mark // of each block of steps, and the state at the end
 	flags      []uint32      // of each block of steps: the lanes that it may hold the maximum of
 	done       []uint32      // of each block of steps: the lanes that it was searched for
-	rows       [blockSteps + 1]kernel.Row
-	states     [blockSteps]kernel.Mark
-	stepFlags  [blockSteps]uint32
-	stepScreen kernel.StepScreen
-	seen       [blockSteps]uint32 // of each step of a block: the lanes that it is done with
-	screen     kernel.Screen
-	top        kernel.Row  // the greatest peak of each lane
-	start      kernel.Mark // the state that a block of strides is marched again from
+	rows       []kernel.Row  // slow: u at each sample of a block
+	states     []kernel.Mark // fast: the state at the start of each step of a block
+	stepFlags  []uint32      // of each step of a block: the lanes that may have the maximum there
+	seen       []uint32      // of each step of a block: the lanes that it is done with
+	stepScreen *kernel.StepScreen
+	screen     *kernel.Screen
+	top        *kernel.Row  // the greatest peak of each lane
+	start      *kernel.Mark // the state that a block of strides is marched again from
 	best       [lanes]float64
+}
+
+func newMotion() *motion {
+	return &motion{search: search{
+		rows:   make([]kernel.Row, blockSteps+1),
+		states: make([]kernel.Mark, blockSteps), stepFlags: make([]uint32, blockSteps), seen: make([]uint32, blockSteps),
+		stepScreen: new(kernel.StepScreen), screen: new(kernel.Screen),
+		top: new(kernel.Row), start: new(kernel.Mark),
+	}}
 }
 
 // load prepares the samples. It returns the D that every oscillator has without

@@ -107,7 +107,7 @@ func (g *slowGroup) marchStrides(m *motion) {
 	mark := &m.marks[last]
 	from, to := m.block(last)
 	g.restart(m, last)
-	kernel.MarchSlow(g.eq, &m.start, &m.marks[last+1], m.a[from:to+1])
+	kernel.MarchSlow(g.eq, m.start, &m.marks[last+1], m.a[from:to+1])
 	for l := range g.members {
 		scale := math.Abs(g.members[l].eq.scale)
 		mark.Peak[l] = max(math.Abs(mark.X[l]), float64(scale*m.start.Peak[l]))
@@ -138,8 +138,8 @@ func (g *slowGroup) restart(m *motion, b int) {
 // have it.
 func (g *slowGroup) sampled(m *motion) {
 	marks := m.marks[:m.blocks()]
-	kernel.GreatestPeaks(&m.top, marks)
-	m.screen = kernel.Screen{}
+	kernel.GreatestPeaks(m.top, marks)
+	*m.screen = kernel.Screen{}
 	for l := range m.top {
 		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
 		m.best[l] = 0
@@ -147,13 +147,13 @@ func (g *slowGroup) sampled(m *motion) {
 	for l := range g.members {
 		m.best[l] = float64(g.unit(l) * m.top[l])
 	}
-	kernel.ScreenPeaks(&m.screen, marks, m.blockLines, m.flags)
+	kernel.ScreenPeaks(m.screen, marks, m.blockLines, m.flags)
 }
 
 // refine raises best to the greatest |u| of the steps, beginning with the blocks
 // of the greatest sample, which usually settle the others.
 func (g *slowGroup) refine(m *motion) {
-	m.stepScreen = *g.screen
+	*m.stepScreen = *g.screen
 	live := ^uint32(0) >> (lanes - len(g.members))
 	for l := range g.members {
 		o := &g.members[l]
@@ -174,7 +174,7 @@ func (g *slowGroup) refine(m *motion) {
 	if g.stride != nil {
 		lines = m.strides[g.level].lines
 	}
-	kernel.ScreenPeaks(&m.screen, m.marks[:m.blocks()], lines, m.flags)
+	kernel.ScreenPeaks(m.screen, m.marks[:m.blocks()], lines, m.flags)
 	for b, flags := range m.flags {
 		g.enter(m, b, flags&live&^m.done[b], false)
 	}
@@ -226,7 +226,7 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	a := m.a[from : to+1]
 	rows, stepFlags := m.rows[:len(a)], m.stepFlags[:len(a)-1]
 	g.trace(m, b, from, rows)
-	m.seen = [blockSteps]uint32{}
+	clear(m.seen)
 	if first {
 		g.enterTop(m, rows, a, flags)
 	}
@@ -234,7 +234,7 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 		l := bits.TrailingZeros32(left)
 		m.stepScreen.Best[l] = m.best[l] / math.Abs(g.members[l].eq.scale)
 	}
-	kernel.ScreenSteps(&m.stepScreen, rows, m.stepLines[from:to], stepFlags, flags)
+	kernel.ScreenSteps(m.stepScreen, rows, m.stepLines[from:to], stepFlags, flags)
 	for k := range stepFlags {
 		for left := stepFlags[k] &^ m.seen[k]; left != 0; left &= left - 1 {
 			l := bits.TrailingZeros32(left)
@@ -256,7 +256,7 @@ func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row) {
 		rows[0][l] = m.marks[b].X[l] / g.members[l].eq.scale
 	}
 	rows[1] = m.start.X
-	kernel.TraceSlow(g.eq, &m.start, m.a[from:from+len(rows)], rows[2:])
+	kernel.TraceSlow(g.eq, m.start, m.a[from:from+len(rows)], rows[2:])
 }
 
 // enterTop looks into the steps on both sides of the greatest sample, which

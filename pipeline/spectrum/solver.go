@@ -47,7 +47,7 @@ func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver,
 	}
 	s := &Solver{
 		method: method, stepS: stepS, oscillators: len(oscillators),
-		scratch: &sync.Pool{New: func() any { return new(motion) }},
+		scratch: &sync.Pool{New: func() any { return newMotion() }},
 	}
 	var list forms
 	for i, o := range oscillators {

@@ -115,10 +115,10 @@ func TestSamplesMissPeaks(t *testing.T) {
 			a := make([]float64, 40)
 			a[1], a[2] = 1, float64(i)/200
 			s := mustSlow(ratio)
-			m := motion{}
+			m := newMotion()
 			m.load(a)
 			d := solveOne(t, 1, ratio, 0, a)
-			sampled := sampledPeak(&s, &m)
+			sampled := sampledPeak(&s, m)
 			if sampled > d*(1+1e-13) {
 				t.Fatalf("T/dt %g: samples reach %v beyond D = %v", ratio, sampled, d)
 			}

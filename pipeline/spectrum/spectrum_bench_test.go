@@ -81,17 +81,17 @@ func BenchmarkMarch(b *testing.B) {
 			if err != nil {
 				b.Fatal(err)
 			}
-			var m motion
+			m := newMotion()
 			m.load(shaken(1, n))
 			for b.Loop() {
 				for i := range strides {
 					m.loadStride(i)
 				}
 				for i := range s.slow {
-					s.slow[i].march(&m)
+					s.slow[i].march(m)
 				}
 				for i := range s.fast {
-					s.fast[i].march(&m)
+					s.fast[i].march(m)
 				}
 			}
 			perOscillatorStep(b, s.Len(), n)

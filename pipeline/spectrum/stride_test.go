@@ -10,7 +10,7 @@ import (
 // block with the bound by which it would be left out.
 func TestStrideBlocks(t *testing.T) {
 	for seed := range uint64(3) {
-		var m motion
+		m := newMotion()
 		m.load(seededMotion(seed, 9*blockSteps+21))
 		for level, over := range strides {
 			m.loadStride(level)
@@ -20,7 +20,7 @@ func TestStrideBlocks(t *testing.T) {
 					if strideOf(o.phase, damping) < 0 {
 						t.Fatalf("phase %g damping %g has no stride", phase, damping)
 					}
-					compareStrides(t, &m, &o, level)
+					compareStrides(t, m, &o, level)
 				}
 			}
 		}
@@ -31,16 +31,16 @@ func compareStrides(t *testing.T, m *motion, o *slow, level int) {
 	t.Helper()
 	g := newStrideGroups([]slow{*o}, level)[0]
 	g.march(m)
-	var exact motion
+	exact := newMotion()
 	exact.load(m.a)
 	steps := newSlowGroups([]slow{*o})[0]
-	steps.march(&exact)
+	steps.march(exact)
 	rho := strideBound(o.phase*float64(strides[level]), o.damping)
 	for b := range m.blocks() {
 		from, to := m.block(b)
 		first := max(from, 1)
 		u := exact.rows[:to-first+1]
-		steps.trace(&exact, b, first, u)
+		steps.trace(exact, b, first, u)
 		top := 0.0
 		for k := range len(u) - 1 {
 			x, end := o.eq.scale*u[k][0], o.eq.scale*u[k+1][0]
