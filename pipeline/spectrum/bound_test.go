@@ -54,7 +54,7 @@ func slowExcess(m *motion, o *slow) (worst float64) {
 		a := m.slowSamples(b)
 		rows := m.rows[:len(a)-1]
 		rows[0] = m.marks[b].X
-		kernel.TraceSlow(g.eq, &m.marks[b], a, rows[1:])
+		kernel.TraceSlow(g.eq, &m.marks[b], a, rows[1:], 1)
 		for k := range len(rows) - 1 {
 			u, end := o.eq.scale*rows[k][0], o.eq.scale*rows[k+1][0]
 			top, _, _ := o.series.peak(0, u, o.velocity(u, end-u, a[k+1], a[k+2]), a[k+1], a[k+2]-a[k+1])
@@ -72,7 +72,7 @@ func fastExcess(m *motion, o *fast) (worst float64) {
 		bound := o.bound(line, m.marks[b].Peak[0])
 		from, to := m.block(b)
 		states := m.states[:to-from]
-		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states)
+		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states, 1)
 		for k := range states {
 			// Every step is followed when best is below its bound.
 			s := state{states[k].X[0], states[k].Y[0]}

@@ -102,7 +102,7 @@ func (g *fastGroup) enter(m *motion, b int, flags uint32, first bool) {
 	}
 	from, to := m.block(b)
 	states, stepFlags := m.states[:to-from], m.stepFlags[:to-from]
-	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states)
+	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states, flags)
 	if first {
 		g.sampled(m, from, states, flags)
 	}

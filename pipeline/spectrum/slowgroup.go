@@ -225,7 +225,7 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	}
 	a := m.a[from : to+1]
 	rows, stepFlags := m.rows[:len(a)], m.stepFlags[:len(a)-1]
-	g.trace(m, b, from, rows)
+	g.trace(m, b, from, rows, flags)
 	clear(m.seen)
 	if first {
 		g.enterTop(m, rows, a, flags)
@@ -244,11 +244,12 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	}
 }
 
-// trace sets rows to u at the samples of a block, of which from is the first.
-func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row) {
+// trace sets rows to u at the samples of a block, of which from is the first,
+// for the lanes flagged.
+func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row, flags uint32) {
 	if g.stride == nil {
 		rows[0] = m.marks[b].X
-		kernel.TraceSlow(g.eq, &m.marks[b], m.a[from-1:from+len(rows)], rows[1:])
+		kernel.TraceSlow(g.eq, &m.marks[b], m.a[from-1:from+len(rows)], rows[1:], flags)
 		return
 	}
 	g.restart(m, b)
@@ -256,7 +257,7 @@ func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row) {
 		rows[0][l] = m.marks[b].X[l] / g.members[l].eq.scale
 	}
 	rows[1] = m.start.X
-	kernel.TraceSlow(g.eq, m.start, m.a[from:from+len(rows)], rows[2:])
+	kernel.TraceSlow(g.eq, m.start, m.a[from:from+len(rows)], rows[2:], flags)
 }
 
 // enterTop looks into the steps on both sides of the greatest sample, which

@@ -40,7 +40,7 @@ func compareStrides(t *testing.T, m *motion, o *slow, level int) {
 		from, to := m.block(b)
 		first := max(from, 1)
 		u := exact.rows[:to-first+1]
-		steps.trace(exact, b, first, u)
+		steps.trace(exact, b, first, u, 1)
 		top := 0.0
 		for k := range len(u) - 1 {
 			x, end := o.eq.scale*u[k][0], o.eq.scale*u[k+1][0]

@@ -13,9 +13,9 @@ const (
 type level struct {
 	name          string
 	marchSlow     func(q *Slow, from, to *Mark, ground *float64, steps int)
-	traceSlow     func(q *Slow, from *Mark, ground *float64, steps int, rows *Row)
+	traceSlow     func(q *Slow, from *Mark, ground *float64, steps int, rows *Row, want uint32)
 	marchFast     func(q *Fast, from, to *Mark, ground *float64, steps int)
-	traceFast     func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark)
+	traceFast     func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark, want uint32)
 	screen        func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
 	screenSquares func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
 	screenSteps   func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32)

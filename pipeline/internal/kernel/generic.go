@@ -48,9 +48,10 @@ func slowFour(q *Slow, from, to *Mark, a []float64, l int) {
 // magnitude orders finite numbers by their absolute value.
 func magnitude(x float64) uint64 { return math.Float64bits(x) << 1 }
 
-func traceSlowGeneric(q *Slow, from *Mark, ground *float64, steps int, rows *Row) {
+func traceSlowGeneric(q *Slow, from *Mark, ground *float64, steps int, rows *Row, want uint32) {
 	a, list := unsafe.Slice(ground, steps+2), unsafe.Slice(rows, steps)
-	for l := range Lanes {
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
 		d, s, m, o := q.Decay[l], -q.Stiffness[l], q.Middle[l], q.Oldest[l]
 		u, w := from.X[l], from.Y[l]
 		for i := range list {
@@ -91,9 +92,10 @@ func fastFour(q *Fast, from, to *Mark, bend []float64, l int) {
 	from.Peak[l+2], from.Peak[l+3] = math.Float64frombits(p2), math.Float64frombits(p3)
 }
 
-func traceFastGeneric(q *Fast, from *Mark, bend *float64, steps int, rows *Mark) {
+func traceFastGeneric(q *Fast, from *Mark, bend *float64, steps int, rows *Mark, want uint32) {
 	bends, list := unsafe.Slice(bend, steps), unsafe.Slice(rows, steps)
-	for l := range Lanes {
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
 		yy, yz, zy, zz, jump := q.YY[l], q.YZ[l], q.ZY[l], q.ZZ[l], q.Jump[l]
 		y, z := from.X[l], from.Y[l]
 		for i, b := range bends {

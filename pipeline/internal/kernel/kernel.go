@@ -92,13 +92,14 @@ func MarchSlow(q *Slow, from, to *Mark, a []float64) {
 }
 
 // TraceSlow is MarchSlow that keeps every state: it sets rows[i] to u at sample
-// a[i+2]. It panics if len(rows) is not len(a) − 2.
-func TraceSlow(q *Slow, from *Mark, a []float64, rows []Row) {
+// a[i+2], for the lanes whose bits want has; other lanes of rows are unspecified.
+// It panics if len(rows) is not len(a) − 2.
+func TraceSlow(q *Slow, from *Mark, a []float64, rows []Row, want uint32) {
 	if len(rows) != max(len(a)-2, 0) {
 		panic("kernel: number of rows is not the number of steps")
 	}
 	if len(rows) > 0 {
-		current.traceSlow(q, from, &a[0], len(rows), &rows[0])
+		current.traceSlow(q, from, &a[0], len(rows), &rows[0], want)
 	}
 }
 
@@ -117,14 +118,15 @@ func MarchFast(q *Fast, from, to *Mark, bend []float64) {
 }
 
 // TraceFast is MarchFast that keeps every state: it sets rows[i] to the state at
-// the start of step i and the measure y² + z² there. It panics if len(rows) is
-// not len(bend).
-func TraceFast(q *Fast, from *Mark, bend []float64, rows []Mark) {
+// the start of step i and the measure y² + z² there, for the lanes whose bits
+// want has; other lanes of rows are unspecified. It panics if len(rows) is not
+// len(bend).
+func TraceFast(q *Fast, from *Mark, bend []float64, rows []Mark, want uint32) {
 	if len(rows) != len(bend) {
 		panic("kernel: number of rows is not the number of steps")
 	}
 	if len(rows) > 0 {
-		current.traceFast(q, from, &bend[0], len(rows), &rows[0])
+		current.traceFast(q, from, &bend[0], len(rows), &rows[0], want)
 	}
 }
 

@@ -12,7 +12,7 @@ func marchSlowAVX2(q *float64, from *float64, to *float64, ground *float64, step
 // traceSlowAVX2 is traceSlowGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func traceSlowAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64)
+func traceSlowAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 
 // marchFastAVX2 is marchFastGeneric for vectors of 4 lanes.
 //
@@ -22,7 +22,7 @@ func marchFastAVX2(q *float64, from *float64, to *float64, ground *float64, step
 // traceFastAVX2 is traceFastGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func traceFastAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64)
+func traceFastAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 
 // screenAVX2 is screenGeneric for vectors of 4 lanes.
 //
@@ -62,7 +62,7 @@ func marchSlowAVX512(q *float64, from *float64, to *float64, ground *float64, st
 // traceSlowAVX512 is traceSlowGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func traceSlowAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64)
+func traceSlowAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 
 // marchFastAVX512 is marchFastGeneric for vectors of 8 lanes.
 //
@@ -72,7 +72,7 @@ func marchFastAVX512(q *float64, from *float64, to *float64, ground *float64, st
 // traceFastAVX512 is traceFastGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func traceFastAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64)
+func traceFastAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 
 // screenAVX512 is screenGeneric for vectors of 8 lanes.
 //

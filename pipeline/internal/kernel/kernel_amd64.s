@@ -158,19 +158,22 @@ step1_done:
 	VZEROUPPER
 	RET
 
-// func traceSlowAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64)
+// func traceSlowAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 // Requires: AVX, AVX2, FMA3
-TEXT ·traceSlowAVX2(SB), NOSPLIT, $0-40
+TEXT ·traceSlowAVX2(SB), NOSPLIT, $0-44
 	MOVQ         q+0(FP), AX
 	MOVQ         from+8(FP), CX
 	MOVQ         ground+16(FP), DX
 	MOVQ         steps+24(FP), BX
 	MOVQ         rows+32(FP), SI
+	MOVL         want+40(FP), DI
 	VPCMPEQQ     Y0, Y0, Y0
 	VPSRLQ       $0x01, Y0, Y0
-	MOVQ         DX, DI
-	MOVQ         BX, R8
-	MOVQ         SI, R9
+	TESTL        $0x0000ffff, DI
+	JZ           skip0
+	MOVQ         DX, R8
+	MOVQ         BX, R9
+	MOVQ         SI, R10
 	VMOVUPD      (CX), Y0
 	VMOVUPD      256(CX), Y4
 	VMOVUPD      32(CX), Y1
@@ -179,48 +182,51 @@ TEXT ·traceSlowAVX2(SB), NOSPLIT, $0-40
 	VMOVUPD      320(CX), Y6
 	VMOVUPD      96(CX), Y3
 	VMOVUPD      352(CX), Y7
-	VBROADCASTSD (DI), Y8
-	VBROADCASTSD 8(DI), Y9
-	TESTQ        R8, R8
+	VBROADCASTSD (R8), Y8
+	VBROADCASTSD 8(R8), Y9
+	TESTQ        R9, R9
 	JLE          step0_done
 
 step0:
-	VBROADCASTSD 16(DI), Y10
+	VBROADCASTSD 16(R8), Y10
 	VFMADD231PD  512(AX), Y9, Y10
 	VFMADD231PD  768(AX), Y8, Y10
 	VFMADD132PD  (AX), Y10, Y4
 	VFNMADD231PD 256(AX), Y0, Y4
 	VADDPD       Y4, Y0, Y0
-	VMOVUPD      Y0, (R9)
-	VBROADCASTSD 16(DI), Y10
+	VMOVUPD      Y0, (R10)
+	VBROADCASTSD 16(R8), Y10
 	VFMADD231PD  544(AX), Y9, Y10
 	VFMADD231PD  800(AX), Y8, Y10
 	VFMADD132PD  32(AX), Y10, Y5
 	VFNMADD231PD 288(AX), Y1, Y5
 	VADDPD       Y5, Y1, Y1
-	VMOVUPD      Y1, 32(R9)
-	VBROADCASTSD 16(DI), Y10
+	VMOVUPD      Y1, 32(R10)
+	VBROADCASTSD 16(R8), Y10
 	VFMADD231PD  576(AX), Y9, Y10
 	VFMADD231PD  832(AX), Y8, Y10
 	VFMADD132PD  64(AX), Y10, Y6
 	VFNMADD231PD 320(AX), Y2, Y6
 	VADDPD       Y6, Y2, Y2
-	VMOVUPD      Y2, 64(R9)
-	VBROADCASTSD 16(DI), Y10
+	VMOVUPD      Y2, 64(R10)
+	VBROADCASTSD 16(R8), Y10
 	VFMADD231PD  608(AX), Y9, Y10
 	VFMADD231PD  864(AX), Y8, Y10
 	VFMADD132PD  96(AX), Y10, Y7
 	VFNMADD231PD 352(AX), Y3, Y7
 	VADDPD       Y7, Y3, Y3
-	VMOVUPD      Y3, 96(R9)
+	VMOVUPD      Y3, 96(R10)
 	VMOVAPD      Y9, Y8
-	VBROADCASTSD 16(DI), Y9
-	ADDQ         $0x08, DI
-	ADDQ         $0x00000100, R9
-	DECQ         R8
+	VBROADCASTSD 16(R8), Y9
+	ADDQ         $0x08, R8
+	ADDQ         $0x00000100, R10
+	DECQ         R9
 	JNZ          step0
 
 step0_done:
+skip0:
+	TESTL        $0xffff0000, DI
+	JZ           skip1
 	MOVQ         BX, BX
 	VMOVUPD      128(CX), Y0
 	VMOVUPD      384(CX), Y4
@@ -272,6 +278,7 @@ step1:
 	JNZ          step1
 
 step1_done:
+skip1:
 	VZEROUPPER
 	RET
 
@@ -437,17 +444,20 @@ step1_done:
 	VZEROUPPER
 	RET
 
-// func traceFastAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64)
+// func traceFastAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 // Requires: AVX, FMA3
-TEXT ·traceFastAVX2(SB), NOSPLIT, $0-40
+TEXT ·traceFastAVX2(SB), NOSPLIT, $0-44
 	MOVQ    q+0(FP), AX
 	MOVQ    from+8(FP), CX
 	MOVQ    ground+16(FP), DX
 	MOVQ    steps+24(FP), BX
 	MOVQ    rows+32(FP), SI
-	MOVQ    DX, DI
-	MOVQ    BX, R8
-	MOVQ    SI, R9
+	MOVL    want+40(FP), DI
+	TESTL   $0x0000ffff, DI
+	JZ      skip0
+	MOVQ    DX, R8
+	MOVQ    BX, R9
+	MOVQ    SI, R10
 	VMOVUPD (CX), Y0
 	VMOVUPD 256(CX), Y4
 	VMOVUPD 32(CX), Y1
@@ -456,16 +466,16 @@ TEXT ·traceFastAVX2(SB), NOSPLIT, $0-40
 	VMOVUPD 320(CX), Y6
 	VMOVUPD 96(CX), Y3
 	VMOVUPD 352(CX), Y7
-	TESTQ   R8, R8
+	TESTQ   R9, R9
 	JLE     step0_done
 
 step0:
-	VBROADCASTSD (DI), Y8
+	VBROADCASTSD (R8), Y8
 	VMULPD       Y4, Y4, Y9
 	VFMADD231PD  Y0, Y0, Y9
-	VMOVUPD      Y0, (R9)
-	VMOVUPD      Y4, 256(R9)
-	VMOVUPD      Y9, 512(R9)
+	VMOVUPD      Y0, (R10)
+	VMOVUPD      Y4, 256(R10)
+	VMOVUPD      Y9, 512(R10)
 	VMULPD       1024(AX), Y8, Y10
 	VFMSUB231PD  256(AX), Y4, Y10
 	VMOVAPD      Y8, Y9
@@ -475,9 +485,9 @@ step0:
 	VMOVAPD      Y9, Y4
 	VMULPD       Y5, Y5, Y9
 	VFMADD231PD  Y1, Y1, Y9
-	VMOVUPD      Y1, 32(R9)
-	VMOVUPD      Y5, 288(R9)
-	VMOVUPD      Y9, 544(R9)
+	VMOVUPD      Y1, 32(R10)
+	VMOVUPD      Y5, 288(R10)
+	VMOVUPD      Y9, 544(R10)
 	VMULPD       1056(AX), Y8, Y10
 	VFMSUB231PD  288(AX), Y5, Y10
 	VMOVAPD      Y8, Y9
@@ -487,9 +497,9 @@ step0:
 	VMOVAPD      Y9, Y5
 	VMULPD       Y6, Y6, Y9
 	VFMADD231PD  Y2, Y2, Y9
-	VMOVUPD      Y2, 64(R9)
-	VMOVUPD      Y6, 320(R9)
-	VMOVUPD      Y9, 576(R9)
+	VMOVUPD      Y2, 64(R10)
+	VMOVUPD      Y6, 320(R10)
+	VMOVUPD      Y9, 576(R10)
 	VMULPD       1088(AX), Y8, Y10
 	VFMSUB231PD  320(AX), Y6, Y10
 	VMOVAPD      Y8, Y9
@@ -499,9 +509,9 @@ step0:
 	VMOVAPD      Y9, Y6
 	VMULPD       Y7, Y7, Y9
 	VFMADD231PD  Y3, Y3, Y9
-	VMOVUPD      Y3, 96(R9)
-	VMOVUPD      Y7, 352(R9)
-	VMOVUPD      Y9, 608(R9)
+	VMOVUPD      Y3, 96(R10)
+	VMOVUPD      Y7, 352(R10)
+	VMOVUPD      Y9, 608(R10)
 	VMULPD       1120(AX), Y8, Y10
 	VFMSUB231PD  352(AX), Y7, Y10
 	VMOVAPD      Y8, Y9
@@ -509,13 +519,16 @@ step0:
 	VFMADD231PD  608(AX), Y3, Y9
 	VFMADD132PD  96(AX), Y10, Y3
 	VMOVAPD      Y9, Y7
-	ADDQ         $0x00000200, R9
-	ADDQ         $0x08, DI
-	ADDQ         $0x00000100, R9
-	DECQ         R8
+	ADDQ         $0x00000200, R10
+	ADDQ         $0x08, R8
+	ADDQ         $0x00000100, R10
+	DECQ         R9
 	JNZ          step0
 
 step0_done:
+skip0:
+	TESTL   $0xffff0000, DI
+	JZ      skip1
 	MOVQ    BX, BX
 	VMOVUPD 128(CX), Y0
 	VMOVUPD 384(CX), Y4
@@ -585,6 +598,7 @@ step1:
 	JNZ          step1
 
 step1_done:
+skip1:
 	VZEROUPPER
 	RET
 
@@ -1746,16 +1760,19 @@ step0_done:
 	VZEROUPPER
 	RET
 
-// func traceSlowAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64)
+// func traceSlowAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 // Requires: AVX, AVX512F
-TEXT ·traceSlowAVX512(SB), NOSPLIT, $0-40
+TEXT ·traceSlowAVX512(SB), NOSPLIT, $0-44
 	MOVQ         q+0(FP), AX
 	MOVQ         from+8(FP), CX
 	MOVQ         ground+16(FP), DX
 	MOVQ         steps+24(FP), BX
 	MOVQ         rows+32(FP), SI
+	MOVL         want+40(FP), DI
 	VPTERNLOGQ   $0xff, Z0, Z0, Z0
 	VPSRLQ       $0x01, Z0, Z0
+	TESTL        $0xffffffff, DI
+	JZ           skip0
 	MOVQ         BX, BX
 	VMOVUPD      (CX), Z0
 	VMOVUPD      256(CX), Z4
@@ -1823,6 +1840,7 @@ step0:
 	JNZ          step0
 
 step0_done:
+skip0:
 	VZEROUPPER
 	RET
 
@@ -1928,14 +1946,17 @@ step0_done:
 	VZEROUPPER
 	RET
 
-// func traceFastAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64)
+// func traceFastAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 // Requires: AVX, AVX512F
-TEXT ·traceFastAVX512(SB), NOSPLIT, $0-40
+TEXT ·traceFastAVX512(SB), NOSPLIT, $0-44
 	MOVQ    q+0(FP), AX
 	MOVQ    from+8(FP), CX
 	MOVQ    ground+16(FP), DX
 	MOVQ    steps+24(FP), BX
 	MOVQ    rows+32(FP), SI
+	MOVL    want+40(FP), DI
+	TESTL   $0xffffffff, DI
+	JZ      skip0
 	MOVQ    BX, BX
 	VMOVUPD (CX), Z0
 	VMOVUPD 256(CX), Z4
@@ -2021,6 +2042,7 @@ step0:
 	JNZ          step0
 
 step0_done:
+skip0:
 	VZEROUPPER
 	RET
 

@@ -86,6 +86,7 @@ type outcome struct {
 	slow, slowEnd, fast, fastEnd Mark
 	stride, strideEnd            Mark
 	inputs                       []Input
+	few                          []Row // traces of the lanes asked for only
 	rows                         []Row
 	marks                        []Mark
 	flags                        []uint32
@@ -97,6 +98,7 @@ func (c *testCase) run() *outcome {
 	steps := max(len(c.ground)-2, 0)
 	// Guards round what the kernels write.
 	rows, marks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
+	some, someMarks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
 	lines, flags := make([]Line, len(c.ground)), make([]uint32, 2*len(c.ground)+steps+2)
 	for i := range flags {
 		flags[i] = 0xdeadbeef
@@ -106,8 +108,11 @@ func (c *testCase) run() *outcome {
 	}
 	MarchSlow(&c.slow, &o.slow, &o.slowEnd, c.ground)
 	MarchFast(&c.fast, &o.fast, &o.fastEnd, c.ground)
-	TraceSlow(&c.slow, &c.start, c.ground, rows[1:steps+1])
-	TraceFast(&c.fast, &c.start, c.ground, marks[1:len(c.ground)+1])
+	TraceSlow(&c.slow, &c.start, c.ground, rows[1:steps+1], ^uint32(0))
+	TraceSlow(&c.slow, &c.start, c.ground, some[1:steps+1], c.want)
+	TraceFast(&c.fast, &c.start, c.ground, marks[1:len(c.ground)+1], ^uint32(0))
+	TraceFast(&c.fast, &c.start, c.ground, someMarks[1:len(c.ground)+1], c.want)
+	o.few = keep(some, someMarks, c.want)
 	inner, n := marks[1:len(c.ground)+1], len(c.ground)
 	ScreenRows(&c.screen, rows[1:steps+1], lines[:steps], flags[1:1+steps])
 	ScreenPeaks(&c.screen, inner, lines, flags[1+steps:1+steps+n])
@@ -128,6 +133,22 @@ func (c *testCase) run() *outcome {
 	}
 	o.rows, o.marks, o.flags = rows, marks, flags
 	return o
+}
+
+// keep returns all rows of traces without the lanes that want does not have.
+func keep(rows []Row, marks []Mark, want uint32) []Row {
+	all := append([]Row{}, rows...)
+	for _, m := range marks {
+		all = append(all, m.X, m.Y, m.Peak)
+	}
+	for i := range all {
+		for l := range Lanes {
+			if want>>l&1 == 0 {
+				all[i][l] = 0
+			}
+		}
+	}
+	return all
 }
 
 func same(x, y float64) bool {
@@ -151,6 +172,9 @@ func (o *outcome) compare(t *testing.T, label string, want *outcome) {
 	}
 	for i := range want.rows {
 		check(fmt.Sprintf("slow trace %d", i-1), &o.rows[i], &want.rows[i])
+	}
+	for i := range want.few {
+		check(fmt.Sprintf("some lanes %d", i), &o.few[i], &want.few[i])
 	}
 	check("slow end x", &o.slowEnd.X, &want.slowEnd.X)
 	check("slow end y", &o.slowEnd.Y, &want.slowEnd.Y)
@@ -305,7 +329,7 @@ func TestScreens(t *testing.T) {
 	use(t, Portable)
 	c := newCase(8, 50)
 	marks, lines := make([]Mark, 50), make([]Line, 50)
-	TraceFast(&c.fast, &c.start, c.ground, marks)
+	TraceFast(&c.fast, &c.start, c.ground, marks, ^uint32(0))
 	peaks, squares := make([]uint32, 50), make([]uint32, 50)
 	for i := range lines {
 		lines[i] = Line{0.1 * float64(i%5), 0.2 * float64(i%3)}
@@ -339,7 +363,7 @@ func TestScreenSteps(t *testing.T) {
 	use(t, Portable)
 	c := newCase(9, 60)
 	rows, lines, flags := make([]Row, 58), make([]Line, 57), make([]uint32, 57)
-	TraceSlow(&c.slow, &c.start, c.ground, rows)
+	TraceSlow(&c.slow, &c.start, c.ground, rows, ^uint32(0))
 	for i := range lines {
 		lines[i].First = 0.1 * float64(i%5)
 	}

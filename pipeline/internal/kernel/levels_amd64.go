@@ -46,7 +46,7 @@ func vectorLevels() []level {
 
 type marching = func(q, from, to, ground *float64, steps int)
 
-type tracing = func(q, from, ground *float64, steps int, rows *float64)
+type tracing = func(q, from, ground *float64, steps int, rows *float64, want uint32)
 
 func slowMarch(f marching) func(*Slow, *Mark, *Mark, *float64, int) {
 	return func(q *Slow, from, to *Mark, ground *float64, steps int) {
@@ -54,9 +54,9 @@ func slowMarch(f marching) func(*Slow, *Mark, *Mark, *float64, int) {
 	}
 }
 
-func slowTrace(f tracing) func(*Slow, *Mark, *float64, int, *Row) {
-	return func(q *Slow, from *Mark, ground *float64, steps int, rows *Row) {
-		f(&q.Decay[0], &from.X[0], ground, steps, &rows[0])
+func slowTrace(f tracing) func(*Slow, *Mark, *float64, int, *Row, uint32) {
+	return func(q *Slow, from *Mark, ground *float64, steps int, rows *Row, want uint32) {
+		f(&q.Decay[0], &from.X[0], ground, steps, &rows[0], want)
 	}
 }
 
@@ -66,9 +66,9 @@ func fastMarch(f marching) func(*Fast, *Mark, *Mark, *float64, int) {
 	}
 }
 
-func fastTrace(f tracing) func(*Fast, *Mark, *float64, int, *Mark) {
-	return func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark) {
-		f(&q.YY[0], &from.X[0], ground, steps, &rows.X[0])
+func fastTrace(f tracing) func(*Fast, *Mark, *float64, int, *Mark, uint32) {
+	return func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark, want uint32) {
+		f(&q.YY[0], &from.X[0], ground, steps, &rows.X[0], want)
 	}
 }
 

@@ -126,12 +126,12 @@ func (l level) coefficient(base reg.Register, r, offset int, keep bool) []operan
 
 // input is what a march reads: pointers to coefficients, states and ground, the
 // number of steps, and where a trace goes.
-type input struct{ q, from, to, ground, steps, rows reg.Register }
+type input struct{ q, from, to, ground, steps, rows, want reg.Register }
 
 func (l level) open(form string, trace bool) input {
 	kind, result := "march", "from, to, ground *float64, steps int"
 	if trace {
-		kind, result = "trace", "from, ground *float64, steps int, rows *float64"
+		kind, result = "trace", "from, ground *float64, steps int, rows *float64, want uint32"
 	}
 	TEXT(kind+form+l.name, NOSPLIT, "func(q, "+result+")")
 	Pragma("noescape")
@@ -142,6 +142,7 @@ func (l level) open(form string, trace bool) input {
 	Doc(fmt.Sprintf("%s%s%s is %s%sGeneric for vectors of %d lanes.", kind, form, l.name, kind, form, l.width))
 	if trace {
 		in.rows = Load(Param("rows"), GP64())
+		in.want = Load(Param("want"), GP32())
 	} else {
 		in.to = Load(Param("to"), GP64())
 	}
@@ -162,6 +163,20 @@ func (in input) loop(name string, ground, steps, rows reg.Register, body func())
 	DECQ(steps)
 	JNZ(operand.LabelRef(name))
 	Label(name + "_done")
+}
+
+// skip passes over a pass of a trace without a lane that is asked for.
+func (l level) skip(in input, pass int, body func()) {
+	if in.rows == nil {
+		body()
+		return
+	}
+	count := l.width * l.vectors
+	next := fmt.Sprintf("skip%d", pass)
+	TESTL(operand.U32((1<<count-1)<<(pass*count)), in.want)
+	JZ(operand.LabelRef(next))
+	body()
+	Label(next)
 }
 
 // cursors copies the registers that a pass moves.
@@ -188,48 +203,53 @@ func (l level) marchSlow(trace bool) {
 	in := l.open("Slow", trace)
 	mask := l.absolute()
 	l.passes(func(offset, pass int) {
-		ground, steps, rows := in.cursors()
-		u, w, peak := l.some(), l.some(), l.some()
-		for v := range u {
-			VMOVUPD(l.at(in.from, markX, offset, v), u[v])
-			VMOVUPD(l.at(in.from, markY, offset, v), w[v])
-			if !trace {
-				l.and(mask, u[v], peak[v])
-			}
-		}
-		decay := l.coefficient(in.q, slowDecay, offset, l.keep)
-		stiffness := l.coefficient(in.q, slowStiffness, offset, l.keep)
-		middle := l.coefficient(in.q, slowMiddle, offset, l.keep)
-		oldest := l.coefficient(in.q, slowOldest, offset, l.keep)
-		x, y := l.vector(), l.vector()
-		VBROADCASTSD(operand.Mem{Base: ground}, x)
-		VBROADCASTSD(operand.Mem{Base: ground, Disp: 8}, y)
-		newest := operand.Mem{Base: ground, Disp: 16}
-		in.loop(fmt.Sprintf("step%d", pass), ground, steps, rows, func() {
-			for v := range u {
-				t := l.vector()
-				VBROADCASTSD(newest, t)
-				VFMADD231PD(middle[v], y, t)
-				VFMADD231PD(oldest[v], x, t)
-				VFMADD132PD(decay[v], t, w[v])
-				VFNMADD231PD(stiffness[v], u[v], w[v])
-				VADDPD(w[v], u[v], u[v])
-				if trace {
-					VMOVUPD(u[v], l.at(rows, 0, offset, v))
-				} else {
-					l.and(mask, u[v], t)
-					VMAXPD(t, peak[v], peak[v])
-				}
-			}
-			VMOVAPD(y, x)
-			VBROADCASTSD(newest, y)
-		})
-		if !trace {
-			l.leave(in, offset, u, w, peak)
-		}
+		l.skip(in, pass, func() { l.slowPass(in, offset, pass, mask) })
 	})
 	VZEROUPPER()
 	RET()
+}
+
+func (l level) slowPass(in input, offset, pass int, mask reg.VecVirtual) {
+	trace := in.rows != nil
+	ground, steps, rows := in.cursors()
+	u, w, peak := l.some(), l.some(), l.some()
+	for v := range u {
+		VMOVUPD(l.at(in.from, markX, offset, v), u[v])
+		VMOVUPD(l.at(in.from, markY, offset, v), w[v])
+		if !trace {
+			l.and(mask, u[v], peak[v])
+		}
+	}
+	decay := l.coefficient(in.q, slowDecay, offset, l.keep)
+	stiffness := l.coefficient(in.q, slowStiffness, offset, l.keep)
+	middle := l.coefficient(in.q, slowMiddle, offset, l.keep)
+	oldest := l.coefficient(in.q, slowOldest, offset, l.keep)
+	x, y := l.vector(), l.vector()
+	VBROADCASTSD(operand.Mem{Base: ground}, x)
+	VBROADCASTSD(operand.Mem{Base: ground, Disp: 8}, y)
+	newest := operand.Mem{Base: ground, Disp: 16}
+	in.loop(fmt.Sprintf("step%d", pass), ground, steps, rows, func() {
+		for v := range u {
+			t := l.vector()
+			VBROADCASTSD(newest, t)
+			VFMADD231PD(middle[v], y, t)
+			VFMADD231PD(oldest[v], x, t)
+			VFMADD132PD(decay[v], t, w[v])
+			VFNMADD231PD(stiffness[v], u[v], w[v])
+			VADDPD(w[v], u[v], u[v])
+			if trace {
+				VMOVUPD(u[v], l.at(rows, 0, offset, v))
+			} else {
+				l.and(mask, u[v], t)
+				VMAXPD(t, peak[v], peak[v])
+			}
+		}
+		VMOVAPD(y, x)
+		VBROADCASTSD(newest, y)
+	})
+	if !trace {
+		l.leave(in, offset, u, w, peak)
+	}
 }
 
 func (l level) leave(in input, offset int, x, y, peak []reg.VecVirtual) {
@@ -243,53 +263,58 @@ func (l level) leave(in input, offset int, x, y, peak []reg.VecVirtual) {
 func (l level) marchFast(trace bool) {
 	in := l.open("Fast", trace)
 	l.passes(func(offset, pass int) {
-		ground, steps, rows := in.cursors()
-		y, z, peak := l.some(), l.some(), l.some()
-		for v := range y {
-			VMOVUPD(l.at(in.from, markX, offset, v), y[v])
-			VMOVUPD(l.at(in.from, markY, offset, v), z[v])
-			if !trace {
-				l.zero(peak[v])
-			}
-		}
-		yy := l.coefficient(in.q, fastYY, offset, l.keep)
-		yz := l.coefficient(in.q, fastYZ, offset, l.keep)
-		zy := l.coefficient(in.q, fastZY, offset, l.keep)
-		zz := l.coefficient(in.q, fastZZ, offset, l.keep)
-		jump := l.coefficient(in.q, fastJump, offset, false)
-		bend := l.vector()
-		in.loop(fmt.Sprintf("step%d", pass), ground, steps, rows, func() {
-			VBROADCASTSD(operand.Mem{Base: ground}, bend)
-			for v := range y {
-				t := l.vector()
-				VMULPD(z[v], z[v], t)
-				VFMADD231PD(y[v], y[v], t)
-				if trace {
-					VMOVUPD(y[v], l.at(rows, markX, offset, v))
-					VMOVUPD(z[v], l.at(rows, markY, offset, v))
-					VMOVUPD(t, l.at(rows, markPeak, offset, v))
-				} else {
-					VMAXPD(t, peak[v], peak[v])
-				}
-				s := l.vector()
-				VMULPD(jump[v], bend, s)
-				VFMSUB231PD(yz[v], z[v], s)
-				VMOVAPD(bend, t)
-				VFMADD231PD(zz[v], z[v], t)
-				VFMADD231PD(zy[v], y[v], t)
-				VFMADD132PD(yy[v], s, y[v])
-				VMOVAPD(t, z[v])
-			}
-			if trace {
-				ADDQ(operand.U32(2*row), rows) // and the loop one more
-			}
-		})
-		if !trace {
-			l.leave(in, offset, y, z, peak)
-		}
+		l.skip(in, pass, func() { l.fastPass(in, offset, pass) })
 	})
 	VZEROUPPER()
 	RET()
+}
+
+func (l level) fastPass(in input, offset, pass int) {
+	trace := in.rows != nil
+	ground, steps, rows := in.cursors()
+	y, z, peak := l.some(), l.some(), l.some()
+	for v := range y {
+		VMOVUPD(l.at(in.from, markX, offset, v), y[v])
+		VMOVUPD(l.at(in.from, markY, offset, v), z[v])
+		if !trace {
+			l.zero(peak[v])
+		}
+	}
+	yy := l.coefficient(in.q, fastYY, offset, l.keep)
+	yz := l.coefficient(in.q, fastYZ, offset, l.keep)
+	zy := l.coefficient(in.q, fastZY, offset, l.keep)
+	zz := l.coefficient(in.q, fastZZ, offset, l.keep)
+	jump := l.coefficient(in.q, fastJump, offset, false)
+	bend := l.vector()
+	in.loop(fmt.Sprintf("step%d", pass), ground, steps, rows, func() {
+		VBROADCASTSD(operand.Mem{Base: ground}, bend)
+		for v := range y {
+			t := l.vector()
+			VMULPD(z[v], z[v], t)
+			VFMADD231PD(y[v], y[v], t)
+			if trace {
+				VMOVUPD(y[v], l.at(rows, markX, offset, v))
+				VMOVUPD(z[v], l.at(rows, markY, offset, v))
+				VMOVUPD(t, l.at(rows, markPeak, offset, v))
+			} else {
+				VMAXPD(t, peak[v], peak[v])
+			}
+			s := l.vector()
+			VMULPD(jump[v], bend, s)
+			VFMSUB231PD(yz[v], z[v], s)
+			VMOVAPD(bend, t)
+			VFMADD231PD(zz[v], z[v], t)
+			VFMADD231PD(zy[v], y[v], t)
+			VFMADD132PD(yy[v], s, y[v])
+			VMOVAPD(t, z[v])
+		}
+		if trace {
+			ADDQ(operand.U32(2*row), rows) // and the loop one more
+		}
+	})
+	if !trace {
+		l.leave(in, offset, y, z, peak)
+	}
 }
 
 // screen compares rows that are stride bytes apart with a limit that falls with
