@@ -21,17 +21,18 @@
 // architecture and every kernel computes the same bits. A Solver is immutable and safe for
 // concurrent use. No allocation is made per sample.
 //
-// How it works. Oscillators march in the lanes of vectors (package kernel). Time is counted in sampling steps and acceleration in a power
-// of two near its peak, so that no coefficient depends on units. An oscillator
-// whose period is long against the step marches as a second-order difference
-// equation (type slow), one whose period is short as the free vibration left
-// over when the straight-line particular solution of each step is taken away
-// (type fast). Both keep, per block of steps, the starting state and one
-// maximum, from which a bound on |u| within the block follows. Blocks whose
-// bound exceeds the best |u| known are marched again with every state kept. In
-// the steps whose own bound exceeds it the turning points are found on the
-// Taylor series of u (type series), which converges to rounding error within a
-// few terms.
+// How it works. Oscillators march in the lanes of vectors (package kernel). Time
+// is counted in sampling steps and acceleration in a power of two near its peak,
+// so that no coefficient depends on units. An oscillator whose period is long
+// against the step marches as a second-order difference equation (type slow), or
+// many steps at once (type stride); one whose period is short as the free
+// vibration left over when the straight-line particular solution of each step is
+// taken away (type fast). All keep, per block of steps, the starting state and
+// one maximum, from which a bound on |u| within the block follows. Blocks whose
+// bound exceeds the best |u| known are marched again with every step kept. In the
+// steps whose own bound exceeds it the turning points are found on the Taylor
+// series of u (type series), which converges to rounding error within a few
+// terms.
 //
 // Start at NewSolver and Solver.SD; Grid is the list of oscillators that a
 // database is built on; Peaks gives the limits of D and A at long and short

@@ -80,8 +80,8 @@ func (o *fast) velocity(s state, slope float64) float64 {
 // It looks into the step only if a bound on |u| exceeds best. The straight line
 // is within its ends. y is within its ends too unless z changes sign, and then
 // goes to one side only, up to √square, if the phase is less than π; else to
-// both. The other bound is that of func (slow) step, with |ü| <= (1 + 2ζ)·φ²·√square in units
-// of y.
+// both. The other bound is that of a slow oscillator's step, with |ü| <= (1 +
+// 2ζ)·φ²·√square in units of y.
 func (o *fast) step(best float64, s state, square, a, next float64) float64 {
 	slope := next - a
 	shift := float64(o.turn.jump * slope)

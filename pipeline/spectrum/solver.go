@@ -36,7 +36,7 @@ type Solver struct {
 // unknown method, for an oscillator that is not valid (wrapping ErrOscillator)
 // and for a step or a ratio of period to step outside the package's limits.
 //
-// Cost: about 2 µs for each oscillator, so keep a Solver for every step that
+// Cost: about 3 µs for each oscillator, so keep a Solver for every step that
 // records come with.
 func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver, error) {
 	if !method.isKnown() {
@@ -118,7 +118,8 @@ func (s *Solver) Len() int { return s.oscillators }
 // T from 0.05·dt to 2000·dt and damping up to 0.99, as the tests show.
 // NewmarkAverage: D is the maximum among samples of the method's own motion.
 //
-// Cost: some two nanoseconds for each oscillator and sample, maxima included.
+// Cost: a quarter of a nanosecond for each oscillator and sample with AVX-512,
+// maxima included, a third with AVX2, and 1.6 ns without (BenchmarkSD).
 // Work space is kept between calls, so that none is allocated as a rule.
 func (s *Solver) SD(dst, acceleration []float64) []float64 {
 	if dst == nil {

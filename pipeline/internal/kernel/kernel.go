@@ -2,8 +2,8 @@ package kernel
 
 import "math"
 
-// Lanes is the number of oscillators of a block. It divides by the lanes in
-// flight of every kernel, and one bit for each fits into a uint32.
+// Lanes is the number of oscillators of a block. It is a multiple of the lanes
+// that every kernel has in flight, and one bit for each fits into a uint32.
 const Lanes = 32
 
 // Row is one number for each oscillator.
