@@ -318,6 +318,9 @@ func TestConcurrentUse(t *testing.T) {
 }
 
 func TestNoAllocation(t *testing.T) {
+	if raceDetector {
+		t.Skip("the race detector has pools forget what they are given, one time in four")
+	}
 	s, err := NewSolver(NigamJennings, 0.01, DefaultGrid().Oscillators()[:50])
 	if err != nil {
 		t.Fatal(err)

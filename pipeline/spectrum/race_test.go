@@ -1,0 +1,6 @@
+//go:build race
+
+package spectrum
+
+// raceDetector tells that tests run with the race detector.
+const raceDetector = true
