@@ -67,7 +67,7 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 
 	group, ctx := errgroup.WithContext(ctx)
 	jobs := make(chan job)
-	queue := make(chan job, queueLength*opts.Workers)
+	queue := make(chan job, queueLength)
 	group.Go(func() error { return dispatch(ctx, files, queue, jobs) })
 	for range opts.Workers {
 		group.Go(func() error { return work(ctx, run.reader, jobs) })
@@ -77,10 +77,10 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	return w.finish(ctx, err)
 }
 
-// queueLength is how many files per worker may be read and solved ahead of the
-// writer. A few smooth out a large file beside small ones; more would only cost
-// memory.
-const queueLength = 4
+// queueLength is how many files may be read and solved ahead of the writer: as
+// many as a batch, so that the workers go on while one is written. A component
+// waits there with its compressed samples and its spectra, some 40 kB.
+const queueLength = batchComponents
 
 // job is one file on its way; the worker answers on result, which holds one
 // value so that it never waits for the writer.
