@@ -14,12 +14,15 @@ import (
 	"github.com/urfave/cli/v2"
 
 	"swaybook/db"
+	"swaybook/pipeline"
 	"swaybook/query"
 )
 
 const (
 	defaultStore  = "swaybook.db"
 	storeVariable = "SWAYBOOK_STORE"
+	// kernelVariable chooses the solver's inner loops, for tests and comparisons.
+	kernelVariable = "SWAYBOOK_KERNEL"
 )
 
 func globalFlags() []cli.Flag {
@@ -43,6 +46,11 @@ func storePath(c *cli.Context) string {
 func checkGlobalFlags(c *cli.Context) error {
 	if store := storePath(c); store == "" || strings.HasPrefix(store, ":") {
 		return usagef("--store %q: want the name of a file", store)
+	}
+	if kernel := os.Getenv(kernelVariable); kernel != "" {
+		if err := pipeline.UseKernel(kernel); err != nil {
+			return usagef("%s: %w", kernelVariable, err)
+		}
 	}
 	_, err := newLogger(c)
 	return err
