@@ -34,9 +34,11 @@ type series struct {
 // newSeries prepares steps of the given phase, 0 < phase <= seriesPhase.
 func newSeries(phase, damping float64) series {
 	s := series{linear: float64(2 * damping * phase), square: float64(phase * phase)}
-	// The k-th derivative grows as k·phaseᵏ at most (the double root at ζ = 1);
-	// its series term must fall below a half unit in the last place.
-	size := 1.0
+	// The k-th derivative grows as k·phaseᵏ⁻³ against the third at most (the double
+	// root at ζ = 1), which the slope of the ground alone can make as great as
+	// the greatest u of a motion that is short against the period. Its series term
+	// must fall below a half unit in the last place.
+	size := 1 / float64(float64(phase*phase)*phase)
 	for s.terms = 1; s.terms < maxTerms; s.terms++ {
 		k := float64(s.terms)
 		size *= phase / k
