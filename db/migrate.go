@@ -109,10 +109,9 @@ func applyStep(ctx context.Context, tx *sql.Tx, s step) error {
 // claimable returns an error for a database that is neither a store nor empty.
 func claimable(ctx context.Context, q queryer) error {
 	var id, tables int
-	if err := q.QueryRowContext(ctx, "PRAGMA application_id").Scan(&id); err != nil {
-		return err
-	}
-	if err := q.QueryRowContext(ctx, `SELECT count(*) FROM sqlite_schema`).Scan(&tables); err != nil {
+	// In one statement: another process may be making the store between two.
+	const both = `SELECT (SELECT application_id FROM pragma_application_id), (SELECT count(*) FROM sqlite_schema)`
+	if err := q.QueryRowContext(ctx, both).Scan(&id, &tables); err != nil {
 		return err
 	}
 	if id != applicationID && tables > 0 {
