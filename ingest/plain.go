@@ -72,6 +72,9 @@ func (plain) Parse(t *Text, hints Hints) ([]Channel, error) {
 	if err != nil {
 		return nil, err
 	}
+	if err := head.checkCount(len(rows.line)); err != nil {
+		return nil, err
+	}
 	step, err := head.step(columns, rows, hints)
 	if err != nil {
 		return nil, err

@@ -2,6 +2,7 @@ package ingest
 
 import (
 	"bytes"
+	"math"
 	"strings"
 )
 
@@ -122,6 +123,23 @@ func (h *plainHead) stated(keys ...string) statement {
 		}
 	}
 	return statement{}
+}
+
+// checkCount holds the number of values a channel has to the one that a comment
+// announces.
+func (h *plainHead) checkCount(values int) error {
+	s := h.stated("npts", "points", "number_of_points", "samples", "number_of_samples", "count")
+	if s.text == "" {
+		return nil
+	}
+	v, unit, ok := quantity(s.text)
+	if !ok || unit != "" || v != math.Trunc(v) {
+		return refuse(s.line, "samples", "expected a number of values, found %s", found(s.text))
+	}
+	if int(v) != values {
+		return refuse(s.line, "samples", "announced %.0f values, found %d", v, values)
+	}
+	return nil
 }
 
 // statedStep returns the time step in s that a comment states as step or rate,

@@ -336,6 +336,27 @@ func TestTimeStepFindsMissingSamplesInCoarseTimes(t *testing.T) {
 	}
 }
 
+// A count that a comment announces is held to.
+func TestPlainCount(t *testing.T) {
+	lines := []string{"# unit: g", "# dt = 0.01", "# npts = 20"}
+	for i := range 20 {
+		lines = append(lines, fmt.Sprintf("%.3f", 0.1*math.Sin(float64(i))))
+	}
+	if _, _, err := parseLines(lines, Hints{}); err != nil {
+		t.Error(err)
+	}
+	for text, want := range map[string]string{
+		"# npts = 40": "samples: announced 40 values, found 20", "# samples: 19": "samples: announced 19 values, found 20",
+		"# count = many": `samples: expected a number of values, found "many"`,
+	} {
+		lines[2] = text
+		_, _, err := parseLines(lines, Hints{})
+		if pe, ok := errors.AsType[*ParseError](err); !ok || pe.Line != 3 || pe.Cause() != want {
+			t.Errorf("%q: %v, want %s in line 3", text, err, want)
+		}
+	}
+}
+
 // What was stated for all files serves silent ones; a file that says otherwise
 // keeps its own, with a warning, and the same from the catalogue is an error.
 func TestPlainAgainstHintsForAll(t *testing.T) {
