@@ -172,7 +172,7 @@ func (h *cosmosHeader) unit(c *Channel, d *cosmosData, hints Hints) (Unit, error
 
 // unlessHinted refuses a hint beside a unit that no hint can state.
 func unlessHinted(name string, d *cosmosData, hints Hints) error {
-	if hints.Unit == "" {
+	if hints.Unit == "" || hints.UnitForAll {
 		return nil
 	}
 	return refuse(d.line, "unit", "the file says %s, %s says %s", name, orElse(hints.UnitFrom, "the hint"), hints.Unit)
