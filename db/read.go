@@ -50,28 +50,33 @@ type HeldComponent struct {
 
 // Components returns every held component, ordered by record code and role.
 func (s *Snapshot) Components(ctx context.Context) ([]HeldComponent, error) {
-	return s.selectComponents(ctx, "", s.Generation.ID)
+	return s.selectComponents(ctx, "")
 }
 
 // ComponentsOf returns the components that the file with this digest gave, as
 // the transaction sees them.
 func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
 	s := Snapshot{tx: t.tx, Generation: g}
-	return s.selectComponents(ctx, "WHERE f.sha256 = ?2", g.ID, sha256)
+	return s.selectComponents(ctx, sha256)
 }
 
-// selectComponents reads the components that the condition picks. Events and
-// stations are shared by many components and read once.
-func (s *Snapshot) selectComponents(ctx context.Context, where string, args ...any) ([]HeldComponent, error) {
-	parents := ""
-	if where != "" {
-		parents = " WHERE ?1 IS NOT NULL AND id IN (SELECT r.%s_id FROM record r JOIN component c ON c.record_id = r.id JOIN source_file f ON f.id = c.source_id " + where + ")"
+// selectComponents reads the components of the file with this digest, of all
+// files where it is "". Events and stations are shared by many components and
+// read once.
+func (s *Snapshot) selectComponents(ctx context.Context, sha256 string) ([]HeldComponent, error) {
+	condition, parents := "", ""
+	args := []any{s.Generation.ID}
+	if sha256 != "" {
+		condition = "WHERE f.sha256 = ?2"
+		parents = ` WHERE id IN (SELECT r.%s_id FROM record r JOIN component c ON c.record_id = r.id
+			JOIN source_file f ON f.id = c.source_id WHERE f.sha256 = ?)`
+		args = append(args, sha256)
 	}
-	events, err := s.events(ctx, strings.ReplaceAll(parents, "%s", "event"), args)
+	events, err := s.events(ctx, strings.ReplaceAll(parents, "%s", "event"), args[1:])
 	if err != nil {
 		return nil, err
 	}
-	stations, err := s.stations(ctx, strings.ReplaceAll(parents, "%s", "station"), args)
+	stations, err := s.stations(ctx, strings.ReplaceAll(parents, "%s", "station"), args[1:])
 	if err != nil {
 		return nil, err
 	}
@@ -85,7 +90,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, where string, args ...a
 		LEFT JOIN measure pga ON pga.record_id = r.id AND pga.role = c.role AND pga.generation_id = ?1 AND pga.name = '`+MeasurePGA+`'
 		LEFT JOIN measure pgv ON pgv.record_id = r.id AND pgv.role = c.role AND pgv.generation_id = ?1 AND pgv.name = '`+MeasurePGV+`'
 		LEFT JOIN measure pgd ON pgd.record_id = r.id AND pgd.role = c.role AND pgd.generation_id = ?1 AND pgd.name = '`+MeasurePGD+`'
-		`+where+` ORDER BY r.code, c.role, c.id`, args...)
+		`+condition+` ORDER BY r.code, c.role, c.id`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
 	}
@@ -121,7 +126,7 @@ func scanComponent(rows *sql.Rows, events map[int64]*Event, stations map[int64]*
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce(name, ''), coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`+where, numbered(where, args)...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce(name, ''), coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
 	}
@@ -147,7 +152,7 @@ func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[in
 }
 
 func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s FROM station`+where, numbered(where, args)...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s FROM station`+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read stations: %w", err)
 	}
@@ -166,14 +171,6 @@ func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[
 		out[v.id] = &v.Station
 	}
 	return out, nil
-}
-
-// numbered returns the arguments for a condition, none where there is none.
-func numbered(where string, args []any) []any {
-	if where == "" {
-		return nil
-	}
-	return args
 }
 
 // SpectrumKey names one stored spectrum of a damping.

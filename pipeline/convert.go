@@ -77,6 +77,14 @@ func orientationOf(c db.Component) ingest.Orientation {
 	return o
 }
 
+func orientationsOf(components []db.Component) []ingest.Orientation {
+	out := make([]ingest.Orientation, len(components))
+	for i, c := range components {
+		out[i] = orientationOf(c)
+	}
+	return out
+}
+
 func pointer(n ingest.Number) *float64 {
 	if !n.Known {
 		return nil

@@ -55,12 +55,8 @@ func renewRoles(ctx context.Context, tx *db.Tx, code string) error {
 	if err != nil {
 		return err
 	}
-	orientations := make([]ingest.Orientation, len(r.Components))
-	for i, held := range r.Components {
-		orientations[i] = orientationOf(held)
-	}
 	renamed := map[string]string{}
-	for i, role := range ingest.AssignRoles(orientations) {
+	for i, role := range ingest.AssignRoles(orientationsOf(r.Components)) {
 		// A direction given twice keeps the roles as they are.
 		if role == "" {
 			return nil

@@ -105,15 +105,10 @@ func startsApart(a, b time.Time) bool {
 // join gives the channel a role beside the record's components, or returns the
 // component that has its direction.
 func join(code string, r db.StoredRecord, c *ingest.Channel) (placement, *db.Component) {
-	orientations := make([]ingest.Orientation, 0, len(r.Components)+1)
-	for _, held := range r.Components {
-		orientations = append(orientations, orientationOf(held))
-	}
-	orientations = append(orientations, c.Orientation)
 	if rival := sameDirection(r.Components, c.Orientation); rival != nil {
 		return placement{}, rival
 	}
-	roles := ingest.AssignRoles(orientations)
+	roles := ingest.AssignRoles(append(orientationsOf(r.Components), c.Orientation))
 	for i, role := range roles {
 		if role == "" {
 			return placement{}, &r.Components[min(i, len(r.Components)-1)]
