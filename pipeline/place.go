@@ -88,7 +88,7 @@ func folderSlug(res result) string {
 // takenError says what the channel stands in the way of, and what to do.
 func takenError(code string, rival db.Component, src db.Source, c *ingest.Channel) error {
 	switch {
-	case rival.SourcePath == src.Path:
+	case rival.SourcePath == src.Path && rival.SourceSHA256 != src.SHA256:
 		return fmt.Errorf("record %s holds an earlier content of this file: files are not replaced; ingest into a new store (--store) to use the new one", code)
 	case c.Orientation.Axis == ingest.AxisUnknown || rival.Axis == axes[ingest.AxisUnknown]:
 		return fmt.Errorf("record %s holds a component of %s, and one of the two states no direction: name it in the file or by the catalogue's component or azimuth_deg column",

@@ -125,3 +125,14 @@ func placeAll(t *testing.T, seats []seat) {
 		}
 	}
 }
+
+// Two channels of one file in one direction are not two contents of the file.
+func TestTakenWithinOneFile(t *testing.T) {
+	c := at(horizontal(0), "", time.Time{})
+	rival := db.Component{Role: "h1", Axis: "horizontal", SourcePath: "a", SourceSHA256: "1"}
+	for digest, want := range map[string]string{"1": "holds this direction already (h1, from a)", "2": "earlier content of this file"} {
+		if err := takenError("E_S", rival, db.Source{Path: "a", SHA256: digest}, &c); !strings.Contains(err.Error(), want) {
+			t.Errorf("digest %s: %v, want %s", digest, err, want)
+		}
+	}
+}
