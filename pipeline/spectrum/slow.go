@@ -122,7 +122,11 @@ func (o *slow) within(best, u, v, end, vEnd, a, next float64) float64 {
 	if float64(spare*spare) <= float64(float64(2*curve)*over) {
 		return best
 	}
-	if !opposite(v, vEnd) || opposite(w, wEnd) {
+	turns, bends := opposite(v, vEnd), opposite(w, wEnd)
+	if !turns && !bends {
+		return best // ü has no zero (see peak), so that the velocity has none either
+	}
+	if bends {
 		best, _, _ = o.series.peak(best, u, v, a, next-a)
 		return best
 	}
