@@ -12,8 +12,8 @@ import (
 // Method is a way of solving the oscillator's equation.
 type Method = spectrum.Method
 
-// ParseMethod reads a solver's name, "nigam-jennings" or "newmark-average". The
-// empty text gives the first, by which stores are computed.
+// ParseMethod reads a solver's name: "nigam-jennings", "newmark-average" or
+// "newmark-linear". The empty text gives the first, by which stores are computed.
 func ParseMethod(text string) (Method, error) {
 	if text == "" {
 		return defaultMethod, nil

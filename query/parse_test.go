@@ -196,8 +196,10 @@ func TestWords(t *testing.T) {
 	checkUsage(t, "units", err, `units: unknown units "metric"; accepted: si, us`)
 	_, err = ParseFormat("csv", FormatTable, FormatJSON)
 	checkUsage(t, "format", err, `format: unknown format "csv"; accepted here: table, json`)
-	if m, err := ParseMethod("newmark-average"); err != nil || m != spectrum.NewmarkAverage {
-		t.Errorf("ParseMethod = %v, %v", m, err)
+	for name, want := range map[string]Method{"": spectrum.NigamJennings, "newmark-average": spectrum.NewmarkAverage, "newmark-linear": spectrum.NewmarkLinear} {
+		if m, err := ParseMethod(name); err != nil || m != want {
+			t.Errorf("ParseMethod(%q) = %v, %v", name, m, err)
+		}
 	}
 	var mistake *UsageError
 	if _, err = ParseMethod("euler"); !errors.As(err, &mistake) {

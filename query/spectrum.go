@@ -6,7 +6,6 @@ import (
 	"slices"
 
 	"swaybook/db"
-	"swaybook/pipeline/spectrum"
 )
 
 // Caution stands under every answer made of spectra.
@@ -145,7 +144,7 @@ func gridPeriods(snapshot *db.Snapshot, band Band) ([]float64, error) {
 // noteMethod writes down a method that is not the one of the store.
 func (r *SelectionReport) noteMethod(m Method) {
 	r.Method = m
-	if m == spectrum.NewmarkAverage {
+	if m != defaultMethod {
 		r.Notes = append(r.Notes, "computed by "+m.String()+", which takes maxima among samples only and lengthens the period; for comparison")
 	}
 }

@@ -260,7 +260,8 @@ func TestOffGridIsComputed(t *testing.T) {
 	}{
 		{"period", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{0.7}}},
 		{"damping", SpectrumQuestion{Damping: 0.03, PeriodsS: []float64{math.Pi}}},
-		{"method", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkAverage}},
+		{"average method", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkAverage}},
+		{"linear method", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkLinear}},
 	}
 	for _, c := range cases {
 		q := c.question
@@ -272,7 +273,7 @@ func TestOffGridIsComputed(t *testing.T) {
 		if r := a.Reductions[0]; r.Min != min(wantA, wantB) || r.Max != max(wantA, wantB) || wantA == wantB {
 			t.Errorf("%s: %v to %v, want %v and %v", c.name, r.Min, r.Max, wantA, wantB)
 		}
-		if isNoted := len(a.Selection.Notes) == 1; isNoted != (c.name == "method") {
+		if isNoted := len(a.Selection.Notes) == 1; isNoted != (q.Method != spectrum.NigamJennings) {
 			t.Errorf("%s: notes %v", c.name, a.Selection.Notes)
 		}
 	}

@@ -38,7 +38,7 @@ func statisticsFlags() []cli.Flag {
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
 		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
 		&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
-		&cli.StringFlag{Name: "method", Value: "nigam-jennings", Usage: "nigam-jennings (exact) or newmark-average (for comparison, computed from the samples)"},
+		&cli.StringFlag{Name: "method", Value: "nigam-jennings", Usage: "nigam-jennings (exact), newmark-average or newmark-linear (for comparison, computed from the samples; the last for periods above 1.814 time steps only)"},
 	)
 }
 

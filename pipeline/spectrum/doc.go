@@ -42,8 +42,8 @@
 // strong-motion earthquake records", Bulletin of the Seismological Society of
 // America 59(2), 1969, 909–922, for the exact recurrence; N. M. Newmark, "A
 // method of computation for structural dynamics", Journal of the Engineering
-// Mechanics Division, ASCE 85(EM3), 1959, 67–94, for the method of average
-// acceleration. The bounds and the two marching forms are derived where they
+// Mechanics Division, ASCE 85(EM3), 1959, 67–94, for the methods of average and
+// of linear acceleration. The bounds and the two marching forms are derived where they
 // are used.
 package spectrum
 

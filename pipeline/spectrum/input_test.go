@@ -80,6 +80,7 @@ func TestNewSolverErrors(t *testing.T) {
 		{"period too short", NigamJennings, 1, []Oscillator{{9e-4, 0}}, "0.0009 steps of 1 s"},
 		{"period too long", NigamJennings, 1e-3, []Oscillator{{2e6, 0}}, "outside 0.001 to 1e+09"},
 		{"period too long to follow", NewmarkAverage, 1e-3, []Oscillator{{2e3, 0}}, "outside 0.001 to 1e+06"},
+		{"period too short to be stable", NewmarkLinear, 0.01, []Oscillator{{0.018, 0.05}}, "period 0.018 s is 1.8 steps of 0.01 s; newmark-linear is stable only above π/√3 = 1.8138 steps"},
 	}
 	for _, tt := range tests {
 		t.Run(tt.name, func(t *testing.T) {

@@ -47,11 +47,17 @@ const (
 	// integration methods", Earthquake Engineering and Structural Dynamics 1,
 	// 1973, 283–291.
 	NewmarkAverage
+	// NewmarkLinear is the same with β = 1/6 (linear acceleration). It is stable
+	// only for ω·dt < 2√3, T > 1.814·dt, and lengthens the period half as much:
+	// without damping by ω·dt/θ ≈ 1 + (ω·dt)²/24, where
+	// cos θ = (1 − (ω·dt)²/3)/(1 + (ω·dt)²/6).
+	NewmarkLinear
 )
 
 var methodNames = [...]string{
 	NigamJennings:  "nigam-jennings",
 	NewmarkAverage: "newmark-average",
+	NewmarkLinear:  "newmark-linear",
 }
 
 // String returns the name that ParseMethod reads.

@@ -140,22 +140,3 @@ func (r *responses) difference() difference {
 		scale:     -r.ramp.hi,
 	}
 }
-
-// newmarkAverage returns the recurrence of Newmark's method with β = 1/4 and
-// γ = 1/2, the accelerations eliminated, in both forms.
-func newmarkAverage(phase, damping float64) (recurrence, difference) {
-	linear, square := float64(2*damping*phase), float64(phase*phase)
-	q := 1 / ((1 + float64(linear*0.5)) + float64(square*0.25))
-	return recurrence{
-			uu: -square * q / 2,
-			uv: q,
-			vu: -square * q,
-			vv: -q * (linear + float64(square*0.5)),
-			pu: -q / 4, qu: -q / 4, pv: -q / 2, qv: -q / 2,
-		}, difference{
-			loss:      linear * q,
-			stiffness: square * q,
-			middle:    2, oldest: 1,
-			scale: -q / 4,
-		}
-}

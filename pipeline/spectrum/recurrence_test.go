@@ -73,26 +73,33 @@ func TestCoefficients(t *testing.T) {
 	t.Logf("greatest errors: %v", worst)
 }
 
-// TestNewmarkForms checks that the difference equation of average acceleration
-// is its recurrence with the velocity eliminated.
+// TestNewmarkForms checks that the difference equations of Newmark's methods are
+// their recurrences with the velocity eliminated.
 func TestNewmarkForms(t *testing.T) {
-	for _, phase := range []float64{0.01, 0.3, 2, 30} {
-		for _, damping := range []float64{0, 0.05, 0.9} {
-			s, d := newmarkAverage(phase, damping)
-			det := (1+s.uu)*(1+s.vv) - s.uv*s.vu
-			trace := 2 + s.uu + s.vv
-			middle := s.pu + s.uv*s.qv - (1+s.vv)*s.qu
-			oldest := s.uv*s.pv - (1+s.vv)*s.pu
-			for name, pair := range map[string][2]float64{
-				"loss":      {d.loss, 1 - det},
-				"stiffness": {d.stiffness, 1 - trace + det},
-				"middle":    {d.middle, middle / s.qu},
-				"oldest":    {d.oldest, oldest / s.qu},
-			} {
-				if math.Abs(pair[0]-pair[1]) > 1e-13 {
-					t.Errorf("phase %g damping %g: %s = %v, recurrence has %v", phase, damping, name, pair[0], pair[1])
-				}
+	for _, m := range newmarkMethods {
+		for _, phase := range []float64{0.01, 0.3, 2, 3.46, 30} {
+			for _, damping := range []float64{0, 0.05, 0.9} {
+				checkForms(t, m, phase, damping)
 			}
+		}
+	}
+}
+
+func checkForms(t *testing.T, m Method, phase, damping float64) {
+	t.Helper()
+	s, d := m.newmark(phase, damping)
+	det := (1+s.uu)*(1+s.vv) - s.uv*s.vu
+	trace := 2 + s.uu + s.vv
+	middle := s.pu + s.uv*s.qv - (1+s.vv)*s.qu
+	oldest := s.uv*s.pv - (1+s.vv)*s.pu
+	for name, pair := range map[string][2]float64{
+		"loss":      {d.loss, 1 - det},
+		"stiffness": {d.stiffness, 1 - trace + det},
+		"middle":    {d.middle, middle / s.qu},
+		"oldest":    {d.oldest, oldest / s.qu},
+	} {
+		if math.Abs(pair[0]-pair[1]) > 1e-13 {
+			t.Errorf("%v phase %g damping %g: %s = %v, recurrence has %v", m, phase, damping, name, pair[0], pair[1])
 		}
 	}
 }

@@ -17,6 +17,7 @@ type slow struct {
 	reach   float64 // α: the displacement that unit ground acceleration can add between samples
 	growth  float64 // β: what between samples multiplies
 	tail    int     // steps of free ringing for sampled maxima, 0 for exact ones
+	norm    energy  // of such ringing
 }
 
 // state is the pair of numbers that a march carries per oscillator.
@@ -62,15 +63,6 @@ func newSlow(index int, phase, damping float64) (slow, bool) {
 		series: newSeries(phase, damping), ringing: newRinging(damping),
 		reach: reach, growth: growth,
 	}, true
-}
-
-// newNewmark returns the slow form of the method of average acceleration.
-func newNewmark(index int, phase, damping float64) slow {
-	step, eq := newmarkAverage(phase, damping)
-	// The undamped phase per step is 2·atan(φ/2) >= φ/(1 + φ/2), so one period
-	// takes at most 2π/φ + π steps. With damping later peaks are lower.
-	tail := int(math.Ceil(2*math.Pi/phase)) + 4
-	return slow{index: index, phase: phase, exact: step, inverse: 1 / step.uv, eq: eq, tail: tail}
 }
 
 // first returns the state at sample 1. The oscillator is at rest at sample 0,
@@ -177,20 +169,4 @@ func (o *slow) ending(m *motion, end state) state {
 	u := float64(o.eq.scale * (end.x - end.y))
 	v := o.velocity(u, float64(o.eq.scale*end.y), a, next)
 	return state{float64(o.eq.scale * end.x), o.arrival(u, v, a, next)}
-}
-
-// ring follows the free ringing of Newmark's method among samples. The method
-// never gains energy, so that |u| stays within √(u² + v²/φ²).
-func (o *slow) ring(best float64, s state) float64 {
-	if reach(s.x, s.y/o.phase) <= best {
-		return best
-	}
-	r := &o.exact
-	for range o.tail {
-		u := s.x + (float64(r.uu*s.x) + float64(r.uv*s.y))
-		s.y += float64(r.vu*s.x) + float64(r.vv*s.y)
-		s.x = u
-		best = max(best, math.Abs(u))
-	}
-	return best
 }

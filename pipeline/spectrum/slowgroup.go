@@ -70,12 +70,12 @@ func (g *slowGroup) solve(dst []float64, m *motion) {
 	end := &m.marks[m.blocks()]
 	for l := range g.members {
 		o := &g.members[l]
-		last := o.ending(m, state{end.X[l], end.Y[l]})
 		if o.tail > 0 {
-			dst[o.index] = o.ring(m.best[l], last)
-		} else {
-			dst[o.index] = o.ringing.peak(m.best[l], last.x, last.y/o.phase)
+			dst[o.index] = o.ring(m, m.best[l], state{end.X[l], end.Y[l]})
+			continue
 		}
+		last := o.ending(m, state{end.X[l], end.Y[l]})
+		dst[o.index] = o.ringing.peak(m.best[l], last.x, last.y/o.phase)
 	}
 }
 

@@ -14,7 +14,7 @@ const (
 	MaxStepS      = 1e3  // s
 	MinPeriodStep = 1e-3 // least T/dt
 	MaxPeriodStep = 1e9  // greatest T/dt of NigamJennings
-	// MaxPeriodStepNewmark is the greatest T/dt of NewmarkAverage, which follows
+	// MaxPeriodStepNewmark is the greatest T/dt of Newmark's methods, which follow
 	// the free ringing step by step for a period.
 	MaxPeriodStepNewmark = 1e6
 )
@@ -33,8 +33,9 @@ type Solver struct {
 
 // NewSolver prepares the coefficients of the oscillators, in any order and
 // repeated or not, for samples stepS seconds apart. It returns an error for an
-// unknown method, for an oscillator that is not valid (wrapping ErrOscillator)
-// and for a step or a ratio of period to step outside the package's limits.
+// unknown method, for an oscillator that is not valid or that the method cannot
+// take in such steps (wrapping ErrOscillator) and for a step outside the
+// package's limits.
 //
 // Cost: about 3 µs for each oscillator, so keep a Solver for every step that
 // records come with.
@@ -75,17 +76,12 @@ func (s *Solver) add(list *forms, index int, o Oscillator) error {
 	if err := o.Validate(); err != nil {
 		return err
 	}
-	most := MaxPeriodStep
-	if s.method == NewmarkAverage {
-		most = MaxPeriodStepNewmark
-	}
-	if ratio := o.PeriodS / s.stepS; !(ratio >= MinPeriodStep && ratio <= most) {
-		return fmt.Errorf("%w: period %g s is %g steps of %g s, outside %g to %g",
-			ErrOscillator, o.PeriodS, ratio, s.stepS, MinPeriodStep, most)
+	if err := s.method.accepts(o, s.stepS); err != nil {
+		return err
 	}
 	phase := float64(Omega(o.PeriodS) * s.stepS)
-	if s.method == NewmarkAverage {
-		list.slow = append(list.slow, newNewmark(index, phase, o.Damping))
+	if s.method.isNewmark() {
+		list.slow = append(list.slow, s.method.newNewmark(index, phase, o.Damping))
 	} else if one, ok := newSlow(index, phase, o.Damping); !ok {
 		list.fast = append(list.fast, newFast(index, phase, o.Damping))
 	} else if i := strideOf(phase, o.Damping); i >= 0 {
@@ -116,7 +112,7 @@ func (s *Solver) Len() int { return s.oscillators }
 //
 // NigamJennings: D is the maximum in continuous time, within 1e-9 of itself for
 // T from 0.05·dt to 2000·dt and damping up to 0.99, as the tests show.
-// NewmarkAverage: D is the maximum among samples of the method's own motion.
+// Newmark's methods: D is the maximum among samples of the method's own motion.
 //
 // Cost: a quarter of a nanosecond for each oscillator and sample with AVX-512,
 // maxima included, a third with AVX2, and 1.6 ns without (BenchmarkSD).

@@ -201,10 +201,10 @@ func TestDelayAndTail(t *testing.T) {
 func TestGrouping(t *testing.T) {
 	const seed = 9
 	r := rand.New(rand.NewPCG(seed, 0))
-	list := DefaultGrid().Oscillators()
 	a := shaken(seed, 1500)
-	for _, method := range []Method{NigamJennings, NewmarkAverage} {
+	for _, method := range []Method{NigamJennings, NewmarkAverage, NewmarkLinear} {
 		for _, step := range []float64{0.005, 0.02} {
+			list := accepted(method, step, DefaultGrid().Oscillators())
 			base := mustSolve(t, method, step, list, a)
 			order := r.Perm(len(list))
 			for len(order) > 0 {
