@@ -6,8 +6,8 @@ import (
 )
 
 // The oracle solves the same problem as Solver by other means: closed forms in
-// exponential, sine and cosine, in multiple precision from sample to sample, and
-// within a step a fine march with cubic (Hermite) maxima.
+// exponential, sine and cosine, in multiple precision, from sample to sample, and
+// every step searched.
 
 // oracleBits leaves some 300 good bits after the cancellations of the closed
 // forms at the smallest phase tested, 1e-9: two terms lose phase⁻³, 90 bits.
@@ -96,45 +96,13 @@ func (s *oracleStep) next(u, v *big.Float, a, b float64) (*big.Float, *big.Float
 	return sum(s.a11, s.a12, s.pu, s.qu), sum(s.a21, s.a22, s.pv, s.qv)
 }
 
-// oracleSD returns D for samples a, time in steps: D in units of acceleration
-// times step squared. The error of a cubic between points of the fine march is
-// below (length of a piece)⁴/384 of the fourth derivative of u, or 2e-12 of D at
-// phases of 1 and more; at small phases strong damping makes the derivative
-// greater against D, and the pieces at least 50 a step are for that. Meant for
-// phases of 1e-3 and more, and damping not above 0.99.
-func oracleSD(phase, damping float64, a []float64) float64 {
-	bp, bd := bigf(phase), bigf(damping)
-	coarse := newOracleStep(bp, bd)
-	pieces := max(50, int(math.Ceil(phase/0.005)))
-	exact := newOracleStep(bquo(bp, bigf(float64(pieces))), bd)
-	fine := fineMarch{step: exact.rounded(), piece: 1 / float64(pieces)}
-	u, v := bigf(0), bigf(0)
-	for k := 0; k+1 < len(a); k++ {
-		fine.start(u, v)
-		fine.march(pieces, a[k], a[k+1]-a[k])
-		u, v = coarse.next(u, v, a[k], a[k+1])
-	}
-	fine.start(u, v)
-	// One and a half damped periods hold the greatest peak of the ringing.
-	ringing := 1.5 * 2 * math.Pi / (phase * math.Sqrt(1-damping*damping))
-	fine.march(int(math.Ceil(ringing*float64(pieces))), 0, 0)
-	return fine.best
-}
-
-// fineMarch goes through pieces of a step in float64, from a state in multiple
-// precision.
+// fineMarch goes through pieces of a step in float64, with the maxima of cubics:
+// within (length of a piece)⁴/384 of the fourth derivative of u.
 type fineMarch struct {
 	step  floatStep
 	piece float64 // length in steps
 	u, v  float64 // velocity per piece
 	best  float64
-}
-
-func (f *fineMarch) start(u, v *big.Float) {
-	f.u, _ = u.Float64()
-	f.v, _ = v.Float64()
-	f.v *= f.piece
-	f.best = max(f.best, math.Abs(f.u))
 }
 
 func (f *fineMarch) march(pieces int, a, slope float64) {
@@ -165,4 +133,65 @@ func hermitePeak(u, v, u1, v1 float64) float64 {
 		}
 	}
 	return peak
+}
+
+// exactSD is what oracleSD approaches, in multiple precision throughout: closed
+// forms at every time asked for, and halving for the zeros of the velocity, which
+// must change sign between points a twentieth of a phase apart. It takes seconds.
+func exactSD(phase, damping float64, a []float64) float64 {
+	bp, bd := bigf(phase), bigf(damping)
+	coarse := newOracleStep(bp, bd)
+	u, v, best := bigf(0), bigf(0), 0.0
+	points := int(math.Ceil(20*phase)) + 4
+	for k := 0; k+1 < len(a); k++ {
+		best = max(best, exactPeak(bp, bd, u, v, bigf(a[k]), bsub(bigf(a[k+1]), bigf(a[k])), 1, points))
+		u, v = coarse.next(u, v, a[k], a[k+1])
+	}
+	ringing := 1.5 * 2 * math.Pi / (phase * math.Sqrt(1-damping*damping))
+	return max(best, exactPeak(bp, bd, u, v, bigf(0), bigf(0), ringing, int(20*ringing*phase)))
+}
+
+// exactPeak returns the greatest |u| of a time from state u, v under a + slope·t.
+func exactPeak(phase, damping, u, v, a, slope *big.Float, long float64, points int) float64 {
+	at := func(t float64) (x, y float64) { return exactState(phase, damping, u, v, a, slope, t) }
+	x, before := at(0)
+	best := math.Abs(x)
+	for i := 1; i <= points; i++ {
+		from, to := long*float64(i-1)/float64(points), long*float64(i)/float64(points)
+		x, after := at(to)
+		best = max(best, math.Abs(x))
+		if before*after < 0 {
+			for range 26 {
+				middle := (from + to) / 2
+				if _, y := at(middle); y*before > 0 {
+					from = middle
+				} else {
+					to = middle
+				}
+			}
+			x, _ = at(to)
+			best = max(best, math.Abs(x))
+		}
+		before = after
+	}
+	return best
+}
+
+// exactState returns displacement and a velocity, in some unit, at time t.
+func exactState(phase, damping, u, v, a, slope *big.Float, t float64) (x, y float64) {
+	if t == 0 {
+		x, _ = u.Float64()
+		y, _ = v.Float64()
+		return x, y
+	}
+	// In units of t: velocity and acceleration grow with it.
+	bt := bigf(t)
+	s := newOracleStep(bmul(phase, bt), damping)
+	square := bmul(bt, bt)
+	from := bmul(a, square)
+	to := badd(from, bmul(slope, bmul(square, bt)))
+	vt := bmul(v, bt)
+	x, _ = badd(badd(bmul(s.a11, u), bmul(s.a12, vt)), badd(bmul(s.pu, from), bmul(s.qu, to))).Float64()
+	y, _ = badd(badd(bmul(s.a21, u), bmul(s.a22, vt)), badd(bmul(s.pv, from), bmul(s.qv, to))).Float64()
+	return x, y
 }

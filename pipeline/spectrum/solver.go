@@ -111,7 +111,7 @@ func (s *Solver) Len() int { return s.oscillators }
 // give 0. A sample that is NaN or infinite makes every D NaN.
 //
 // NigamJennings: D is the maximum in continuous time, within 1e-9 of itself for
-// T from 0.05·dt to 2000·dt and damping up to 0.99, as the tests show.
+// T from 0.05·dt to 5000·dt and damping up to 0.99, as the tests show.
 // Newmark's methods: D is the maximum among samples of the method's own motion.
 //
 // Cost: a quarter of a nanosecond for each oscillator and sample with AVX-512,

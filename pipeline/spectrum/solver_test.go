@@ -45,33 +45,6 @@ var ratios = []float64{0.05, 0.2, 0.3, 0.5, 0.7, 1, 1.5, 2, 2.5, 3, 4, 4.9, 5, 5
 
 var dampings = []float64{0, 0.01, 0.05, 0.2, 0.5, 0.9, 0.99}
 
-// TestContinuousMaximum compares D with the oracle: the whole motion in
-// continuous time, within 1e-9.
-func TestContinuousMaximum(t *testing.T) {
-	seeds := uint64(4)
-	if testing.Short() {
-		seeds = 1
-	}
-	worst := 0.0
-	for seed := range seeds {
-		a := seededMotion(seed, 150)
-		if seed%2 == 1 {
-			a[0], a[len(a)-1] = 0.7, -1.1 // jumps at the ends
-		}
-		for _, ratio := range ratios {
-			for _, damping := range dampings {
-				want := oracleSD(Omega(ratio), damping, a)
-				e := off(solveOne(t, 1, ratio, damping, a), want)
-				if !(e <= 1e-9) {
-					t.Errorf("seed %d T/dt %g damping %g: D is off by %.2g", seed, ratio, damping, e)
-				}
-				worst = max(worst, e)
-			}
-		}
-	}
-	t.Logf("greatest error %.2g", worst)
-}
-
 // TestFormsAgree solves the same motion with twice and four times the samples
 // on the same straight lines. The continuous maximum stays, while oscillators
 // change from the fast form to the slow one.
@@ -334,25 +307,4 @@ func TestNoAllocation(t *testing.T) {
 	if n := testing.AllocsPerRun(50, func() { s.SD(d, a) }); n > 1 {
 		t.Errorf("SD allocates %v times a call, want none", n)
 	}
-}
-
-// FuzzSD compares short motions of any shape with the oracle.
-func FuzzSD(f *testing.F) {
-	f.Add([]byte{0, 10, 200, 30, 0}, 3.0, 0.05)
-	f.Add([]byte{255, 0, 255, 0, 255, 0}, 0.4, 0.0)
-	f.Add([]byte{7, 7}, 100.0, 0.7)
-	f.Add([]byte{128, 128, 1, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 128}, 4.97, 0.99)
-	f.Fuzz(func(t *testing.T, data []byte, ratio, damping float64) {
-		if !(ratio >= 0.05 && ratio <= 2000 && damping >= 0 && damping <= 0.99) || len(data) < 2 {
-			t.Skip()
-		}
-		a := make([]float64, min(len(data), 80))
-		for i := range a {
-			a[i] = float64(int8(data[i])) / 16
-		}
-		got, want := solveOne(t, 1, ratio, damping, a), oracleSD(Omega(ratio), damping, a)
-		if math.Abs(got-want) > 1e-9*want {
-			t.Errorf("T/dt %v damping %v motion %v: D = %v, want %v (off by %.2g)", ratio, damping, a, got, want, off(got, want))
-		}
-	})
 }
