@@ -14,10 +14,7 @@ import (
 // that the envelope of the vibration does not rule out the velocity's zeros are
 // found on the power series of the equation of motion.
 func oracleSD(phase, damping float64, a []float64) float64 {
-	top := 0.0
-	for _, x := range a {
-		top = max(top, math.Abs(x))
-	}
+	top := peakOf(a)
 	if top == 0 {
 		return 0
 	}
@@ -39,6 +36,13 @@ func oracleSD(phase, damping float64, a []float64) float64 {
 		x, y = ring.piece(x, y, 0, 0)
 	}
 	return math.Ldexp(ring.best, exponent)
+}
+
+func peakOf(a []float64) (top float64) {
+	for _, x := range a {
+		top = max(top, math.Abs(x))
+	}
+	return top
 }
 
 // timesPower returns x·2ⁿ for any n, short of overflow and underflow.
