@@ -65,14 +65,8 @@ func floorDivide(x, y int64) int64 {
 // is about 4e-10 (piecewise cubics) and some 1e-12 (integration of the
 // differential equation).
 func TestSciPyReference(t *testing.T) {
-	data, err := os.ReadFile(filepath.Join("..", "..", "testdata", "reference", "spectra.json"))
-	if err != nil {
-		t.Fatal(err)
-	}
 	var ref reference
-	if err := json.Unmarshal(data, &ref); err != nil {
-		t.Fatal(err)
-	}
+	readReference(t, "spectra.json", &ref)
 	if len(ref.Motions) != 3 || len(ref.PeriodsS)*len(ref.Dampings) != 185 {
 		t.Fatalf("%d motions, %d periods, %d dampings in the file", len(ref.Motions), len(ref.PeriodsS), len(ref.Dampings))
 	}
@@ -98,6 +92,73 @@ func TestSciPyReference(t *testing.T) {
 				worst = max(worst, off(d, w.SD))
 			}
 			t.Logf("greatest difference from the integration %.2g", worst)
+		})
+	}
+}
+
+// readReference reads a file of testdata/reference.
+func readReference(t *testing.T, name string, into any) {
+	t.Helper()
+	data, err := os.ReadFile(filepath.Join("..", "..", "testdata", "reference", name))
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := json.Unmarshal(data, into); err != nil {
+		t.Fatalf("%s: %v", name, err)
+	}
+}
+
+// referencePair is a pair of motions of rotd.json, which rotd.py writes.
+type referencePair struct {
+	Name       string
+	StepS      float64 `json:"step_s"`
+	N          int
+	Tail       int64
+	Components [2]referenceMotion // seeds and sums
+	RotD       []struct {
+		PeriodS float64 `json:"period_s"`
+		Damping float64
+		RotD50  float64 `json:"rotd50_m"`
+		RotD100 float64 `json:"rotd100_m"`
+	}
+}
+
+// TestSciPyRotD compares RotD with a rotation by brute force of two histories by
+// SciPy, whose own error is about 3e-11 (piecewise cubics).
+func TestSciPyRotD(t *testing.T) {
+	var ref struct{ Pairs []referencePair }
+	readReference(t, "rotd.json", &ref)
+	if len(ref.Pairs) != 2 {
+		t.Fatalf("%d pairs in the file", len(ref.Pairs))
+	}
+	for _, p := range ref.Pairs {
+		t.Run(p.Name, func(t *testing.T) {
+			var list []Oscillator
+			for _, w := range p.RotD {
+				list = append(list, Oscillator{w.PeriodS, w.Damping})
+			}
+			if len(list) != 12 {
+				t.Fatalf("%d oscillators in the file", len(list))
+			}
+			s, err := NewSolver(NigamJennings, p.StepS, list)
+			if err != nil {
+				t.Fatal(err)
+			}
+			var components [2][]float64
+			for i, m := range p.Components {
+				m.Name, m.N, m.Tail = p.Name, p.N, p.Tail
+				components[i] = m.samples(t)
+			}
+			worst := 0.0
+			d50, d100 := rotd(t, s, components[0], components[1])
+			for i, w := range p.RotD {
+				e := max(off(d50[i], w.RotD50), off(d100[i], w.RotD100))
+				if !(e <= 2e-10) {
+					t.Errorf("%+v: RotD50 %v RotD100 %v m, SciPy gives %v and %v", list[i], d50[i], d100[i], w.RotD50, w.RotD100)
+				}
+				worst = max(worst, e)
+			}
+			t.Logf("greatest difference %.2g", worst)
 		})
 	}
 }

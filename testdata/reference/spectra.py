@@ -79,9 +79,11 @@ def hermite_peak(u, v, h):
     return best
 
 
-def by_expm(a, step, period, damping):
+def history(a, step, period, damping, phase=0.02):
+    """Displacements and velocities at points h apart, and h: pieces of a step of
+    at most phase/omega, ten or more a step, through a period and a half of ringing."""
     omega = 2 * np.pi / period
-    pieces = max(10, int(np.ceil(omega * step / 0.02)))
+    pieces = max(10, int(np.ceil(omega * step / phase)))
     h = step / pieces
     e = expm(system(omega, damping) * h)
     m, load, ramp = e[:2, :2], e[:2, 2], e[:2, 3]
@@ -97,7 +99,11 @@ def by_expm(a, step, period, damping):
         u, v = m00 * u + m01 * v + p, m10 * u + m11 * v + q
         us.append(u)
         vs.append(v)
-    return hermite_peak(np.array(us), np.array(vs), h)
+    return np.array(us), np.array(vs), h
+
+
+def by_expm(a, step, period, damping):
+    return hermite_peak(*history(a, step, period, damping))
 
 
 def by_ivp(a, step, period, damping):
