@@ -1,0 +1,125 @@
+package kernel
+
+import (
+	"fmt"
+	"os"
+	"runtime/debug"
+	"syscall"
+	"testing"
+	"unsafe"
+)
+
+// placing gives space for what a kernel reads or writes: plain, or flush against
+// a page that may not be touched.
+type placing struct {
+	t     *testing.T
+	where string // "plain", "before" or "after" the forbidden page
+}
+
+// place returns n zero values of T.
+func place[T any](p *placing, n int) []T {
+	size := n * int(unsafe.Sizeof(*new(T)))
+	if p.where == "plain" || size == 0 {
+		return make([]T, n)
+	}
+	page := os.Getpagesize()
+	room := (size + page - 1) / page * page
+	memory, err := syscall.Mmap(-1, 0, room+2*page, syscall.PROT_READ|syscall.PROT_WRITE, syscall.MAP_ANON|syscall.MAP_PRIVATE)
+	if err != nil {
+		p.t.Fatal(err)
+	}
+	p.t.Cleanup(func() {
+		if err := syscall.Munmap(memory); err != nil {
+			p.t.Error(err)
+		}
+	})
+	for _, guard := range [][]byte{memory[:page], memory[page+room:]} {
+		if err := syscall.Mprotect(guard, syscall.PROT_NONE); err != nil {
+			p.t.Fatal(err)
+		}
+	}
+	at := page
+	if p.where == "before" {
+		at += room - size
+	}
+	return unsafe.Slice((*T)(unsafe.Pointer(&memory[at])), n)
+}
+
+// copied is place with the values of a slice.
+func copied[T any](p *placing, values []T) []T {
+	out := place[T](p, len(values))
+	copy(out, values)
+	return out
+}
+
+// one is copied for a single value.
+func one[T any](p *placing, value T) *T { return &copied(p, []T{value})[0] }
+
+// placed is what the functions make of a case with everything placed.
+type placed struct {
+	marks  []Mark
+	rows   []Row
+	inputs []Input
+	flags  [][]uint32
+}
+
+// runPlaced calls every function of the package.
+func (c *testCase) runPlaced(p *placing) *placed {
+	n := len(c.ground)
+	steps, strides := max(n-2, 0), (n-1)/(len(c.shares)-1)
+	ground := copied(p, c.ground)
+	slow, fast, stride := one(p, c.slow), one(p, c.fast), one(p, c.stride)
+	screen, stepScreen := one(p, c.screen), one(p, c.steps)
+	lines := place[Line](p, n)
+	for i := range lines {
+		lines[i] = Line{0.1 * float64(i%5), 0.2 * float64(i%3)}
+	}
+	from := [3]*Mark{one(p, c.start), one(p, c.start), one(p, c.start)}
+	to := [3]*Mark{one(p, Mark{}), one(p, Mark{}), one(p, Mark{})}
+	MarchSlow(slow, from[0], to[0], ground)
+	MarchFast(fast, from[1], to[1], ground)
+	rows, marks := place[Row](p, steps), place[Mark](p, n)
+	TraceSlow(slow, from[0], ground, rows, c.want)
+	TraceSlow(slow, from[0], ground, rows, ^uint32(0))
+	TraceFast(fast, from[1], ground, marks, c.want)
+	TraceFast(fast, from[1], ground, marks, ^uint32(0))
+	inputs := place[Input](p, strides)
+	Mix(inputs, copied(p, c.shares), ground[:strides*(len(c.shares)-1)+1])
+	MarchStride(stride, from[2], to[2], inputs)
+	flags := [][]uint32{place[uint32](p, steps), place[uint32](p, n), place[uint32](p, n), place[uint32](p, max(steps-1, 0))}
+	ScreenRows(screen, rows, copied(p, lines[:steps]), flags[0])
+	ScreenPeaks(screen, marks, lines, flags[1])
+	ScreenSquares(screen, marks, lines, flags[2])
+	if steps > 0 {
+		ScreenSteps(stepScreen, rows, copied(p, lines[:steps-1]), flags[3], c.want)
+	}
+	top := one(p, Row{})
+	GreatestPeaks(top, marks)
+	return &placed{
+		marks: append(marks, *from[0], *from[1], *from[2], *to[0], *to[1], *to[2]),
+		rows:  append(rows, *top), inputs: inputs, flags: flags,
+	}
+}
+
+// TestGuardPages runs every function of every kernel with all that it is given
+// against pages that fault when they are read or written, before and after, and
+// finds the results that plain space gives.
+func TestGuardPages(t *testing.T) {
+	for _, n := range []int{1, 2, 3, 4, 5, 6, 7, 8, 9, 13, 16, 17, 31, 33, 64, 65, 66, 67, 130} {
+		c := newCase(uint64(n), n)
+		use(t, Portable)
+		want := fmt.Sprint(*c.runPlaced(&placing{t, "plain"}))
+		for _, name := range Names() {
+			for _, where := range []string{"before", "after"} {
+				t.Run(fmt.Sprintf("%s/%s/%d", name, where, n), func(t *testing.T) {
+					use(t, name)
+					// A fault then fails this test instead of ending the program.
+					defer debug.SetPanicOnFault(debug.SetPanicOnFault(true))
+					if got := fmt.Sprint(*c.runPlaced(&placing{t, where})); got != want {
+						t.Error("results differ from those in plain space")
+					}
+				})
+			}
+		}
+	}
+}
