@@ -144,16 +144,12 @@ func at2Samples(t *Text, line, count int, c *Channel) ([]float64, error) {
 	xs := make([]float64, 0, min(count, countFields(t, line)))
 	extra, zeros, perLine := 0, true, 0
 	for n := line; n <= t.Len(); n++ {
-		rest := t.Bytes(n)
-		for {
-			var field []byte
-			if field, rest = nextNumber(rest); field == nil {
-				break
-			}
-			v, ok := parseNumber(field)
+		for rest := skipBlanks(t.Bytes(n)); len(rest) > 0; rest = skipBlanks(rest) {
+			v, length, ok := numberIn(rest)
 			if !ok {
-				return nil, refuse(n, "samples", "expected a number, found %s", found(string(field)))
+				return nil, refuse(n, "samples", "expected a number, found %s", found(string(rest[:length])))
 			}
+			rest = rest[length:]
 			if len(xs) == count {
 				extra++
 				zeros = zeros && v == 0
@@ -176,30 +172,29 @@ func at2Samples(t *Text, line, count int, c *Channel) ([]float64, error) {
 	return xs, nil
 }
 
-// nextNumber returns the next field of a line of numbers, nil at the end, and
-// what follows it. Fields end at blanks; a field that touches the next one ends
-// before its sign.
-func nextNumber(line []byte) (field, rest []byte) {
-	i := 0
-	for i < len(line) && isBlank(line[i]) {
-		i++
+// numberIn reads the number that line begins with and returns it with the length
+// of its field, and false where the field is no number. Fields end at blanks; a
+// field that touches the next one ends before its sign.
+func numberIn(line []byte) (v float64, length int, ok bool) {
+	v, length = leadingNumber(line)
+	if length == len(line) || length > 0 && isBlank(line[length]) {
+		return v, length, true
 	}
-	if i == len(line) {
-		return nil, nil
+	length = 1
+	for length < len(line) && !isBlank(line[length]) && !touches(line, length) {
+		length++
 	}
-	j := i + 1
-	for ; j < len(line) && !isBlank(line[j]); j++ {
-		if (line[j] == '-' || line[j] == '+') && touches(line[i:], j-i) {
-			break
-		}
-	}
-	return line[i:j], line[j:]
+	v, ok = parseNumber(line[:length])
+	return v, length, ok
 }
 
-// touches reports whether the sign at b[at] begins a new number: it follows a
+// touches reports whether a sign at b[at] begins a new number: it follows a
 // digit or a point, and is not the exponent without letter that Fortran writes
 // beyond 99 (.12345-103).
 func touches(b []byte, at int) bool {
+	if b[at] != '-' && b[at] != '+' {
+		return false
+	}
 	before := b[at-1]
 	if !isDigit(before) && before != '.' {
 		return false

@@ -164,7 +164,7 @@ func TestAT2Describe(t *testing.T) {
 	}
 }
 
-func TestNextNumber(t *testing.T) {
+func TestNumberIn(t *testing.T) {
 	cases := map[string][]string{
 		"  .1234E-03-.2345E-03":   {".1234E-03", "-.2345E-03"},
 		"-.1+.2-.3":               {"-.1", "+.2", "-.3"},
@@ -182,12 +182,14 @@ func TestNextNumber(t *testing.T) {
 	}
 	for line, want := range cases {
 		var got []string
-		for rest := []byte(line); ; {
-			var field []byte
-			if field, rest = nextNumber(rest); field == nil {
-				break
+		for rest := skipBlanks([]byte(line)); len(rest) > 0; rest = skipBlanks(rest) {
+			v, length, ok := numberIn(rest)
+			field := rest[:length]
+			if want, wantOK := parseNumber(field); v != want || ok != wantOK {
+				t.Errorf("numberIn(%q) = %v, %v, want %v, %v", rest, v, ok, want, wantOK)
 			}
 			got = append(got, string(field))
+			rest = rest[length:]
 		}
 		if fmt.Sprint(got) != fmt.Sprint(want) || len(got) != len(want) {
 			t.Errorf("fields of %q: %q, want %q", line, got, want)

@@ -49,18 +49,24 @@ func countFields(t *Text, line int) int {
 // nextField returns the next run of bytes that are no blanks, nil at the end,
 // and what follows it.
 func nextField(line []byte) (field, rest []byte) {
+	line = skipBlanks(line)
+	if len(line) == 0 {
+		return nil, nil
+	}
+	n := 1
+	for n < len(line) && !isBlank(line[n]) {
+		n++
+	}
+	return line[:n], line[n:]
+}
+
+// skipBlanks returns line without the blanks that it begins with.
+func skipBlanks(line []byte) []byte {
 	i := 0
 	for i < len(line) && isBlank(line[i]) {
 		i++
 	}
-	if i == len(line) {
-		return nil, nil
-	}
-	j := i + 1
-	for j < len(line) && !isBlank(line[j]) {
-		j++
-	}
-	return line[i:j], line[j:]
+	return line[i:]
 }
 
 func isBlank(b byte) bool { return b == ' ' || b == '\t' || b == '\f' || b == '\v' }
