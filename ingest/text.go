@@ -132,18 +132,25 @@ func refuseBinary(data []byte) error {
 	return nil
 }
 
+// splitLines ends a line at LF, CRLF or a lone CR. The text's last line may do
+// without.
 func splitLines(data []byte) [][]byte {
 	lines := make([][]byte, 0, bytes.Count(data, []byte("\n"))+1)
 	for len(data) > 0 {
-		i := bytes.IndexAny(data, "\n\r")
-		if i < 0 {
-			return append(lines, data)
+		var line []byte
+		line, data, _ = bytes.Cut(data, []byte("\n"))
+		for {
+			i := bytes.IndexByte(line, '\r')
+			if i < 0 {
+				break
+			}
+			if i == len(line)-1 {
+				line = line[:i]
+				break
+			}
+			lines, line = append(lines, line[:i]), line[i+1:]
 		}
-		lines = append(lines, data[:i])
-		if data[i] == '\r' && i+1 < len(data) && data[i+1] == '\n' {
-			i++
-		}
-		data = data[i+1:]
+		lines = append(lines, line)
 	}
 	return lines
 }
