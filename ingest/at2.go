@@ -176,7 +176,7 @@ func at2Samples(t *Text, line, count int, c *Channel) ([]float64, error) {
 // of its field, and false where the field is no number. Fields end at blanks; a
 // field that touches the next one ends before its sign.
 func numberIn(line []byte) (v float64, length int, ok bool) {
-	v, length = leadingNumber(line)
+	v, length = leadingNumber(line, '.')
 	if length == len(line) || length > 0 && isBlank(line[length]) {
 		return v, length, true
 	}

@@ -40,14 +40,14 @@ const (
 // Source: ISO/IEC 1539-1, edit descriptors E and D, for the exponent without
 // letter (from memory).
 func parseNumber(b []byte) (float64, bool) {
-	if v, n := leadingNumber(b); n > 0 && n == len(b) {
+	if v, n := leadingNumber(b, '.'); n > 0 && n == len(b) {
 		return v, true
 	}
 	return parseSlow(b)
 }
 
-// leadingNumber reads the number that b begins with, as far as it goes, and
-// returns it and its length in bytes. The length is 0 for what is no number, and
+// leadingNumber reads the number that b begins with, its decimals after mark, as
+// far as it goes, and returns it and its length in bytes. The length is 0 for what is no number, and
 // for numbers that are none of the common ones: more than maxDigits, an exponent
 // of more than three digits or without letter, or a value that takes more than
 // one operation to round correctly.
@@ -57,7 +57,7 @@ func parseNumber(b []byte) (float64, bool) {
 //
 // Source: W. D. Clinger, How to Read Floating Point Numbers Accurately, PLDI
 // 1990, for the exact cases (from memory).
-func leadingNumber(b []byte) (v float64, n int) {
+func leadingNumber(b []byte, mark byte) (v float64, n int) {
 	if len(b) == 0 {
 		return 0, 0
 	}
@@ -67,7 +67,7 @@ func leadingNumber(b []byte) (v float64, n int) {
 		mantissa = mantissa*10 + uint64(b[end]-'0')
 	}
 	digits, decimals := end-i, 0
-	if end < len(b) && b[end] == '.' {
+	if end < len(b) && b[end] == mark {
 		point := end + 1
 		mantissa, end = digitsAt(b, point, mantissa)
 		decimals = end - point

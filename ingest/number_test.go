@@ -68,7 +68,7 @@ func TestParseNumberIsExact(t *testing.T) {
 			t.Fatalf("seed %d, case %d: parseNumber(%q) = %v, %v, want %v, %v", seed, i, in, got, ok, want, err)
 		}
 		line := []byte(in + " 123456789") // what follows must not reach into the number
-		if got, n := leadingNumber(line); n > 0 && (n != len(in) || math.Float64bits(got) != math.Float64bits(want)) {
+		if got, n := leadingNumber(line, '.'); n > 0 && (n != len(in) || math.Float64bits(got) != math.Float64bits(want)) {
 			t.Fatalf("seed %d, case %d: leadingNumber(%q) = %v, %d, want %v, %d", seed, i, line, got, n, want, len(in))
 		}
 	}

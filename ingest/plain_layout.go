@@ -83,12 +83,12 @@ func (l layout) fit(lines [][]byte) (fields, fits int) {
 // no number.
 func (l layout) count(line []byte) (n int, ok bool) {
 	var room [64]byte
-	for rest, more := line, true; more; {
+	for rest := line; len(rest) > 0; {
 		var field []byte
-		if field, rest, more = l.next(rest); field == nil {
+		if field, rest, _, ok = l.read(rest, room[:0]); field == nil {
 			break
 		}
-		if _, ok := l.number(field, room[:0]); !ok {
+		if !ok {
 			return 0, false
 		}
 		n++
@@ -116,22 +116,45 @@ func isPlainInteger(b []byte) bool {
 	return digits[0] != '0' || len(digits) == 1 && b[0] != '-'
 }
 
+// read reads the next field of a line, without blanks and quotes, as a number:
+// the field, nil where there is none, what follows it and its delimiter, the
+// value, and whether it is a number; scratch is room for a rewritten copy. A
+// delimiter at the end of the line makes no field.
+func (l layout) read(line, scratch []byte) (field, rest []byte, v float64, ok bool) {
+	for len(line) > 0 && line[0] == ' ' {
+		line = line[1:]
+	}
+	v, n := leadingNumber(line, l.mark()) // always below maxPlain
+	switch {
+	case n == 0:
+	case n == len(line):
+		return line, nil, v, true
+	case line[n] == l.delimiter:
+		return line[:n], line[n+1:], v, true
+	}
+	if field, rest = l.next(line); field != nil {
+		v, ok = l.number(field, scratch)
+	}
+	return field, rest, v, ok
+}
+
+// mark returns what marks decimals.
+func (l layout) mark() byte {
+	if l.comma {
+		return ','
+	}
+	return '.'
+}
+
 // next returns the next field of a line without blanks and quotes, nil where
-// there is none, what follows it, and whether anything does. A delimiter at the
-// end of the line makes no field.
-func (l layout) next(line []byte) (field, rest []byte, more bool) {
+// there is none, and what follows it and its delimiter.
+func (l layout) next(line []byte) (field, rest []byte) {
 	if l.delimiter == ' ' {
 		field, rest = nextField(line)
-		return unquote(field), rest, len(rest) > 0
+		return unquote(field), rest
 	}
-	if len(bytes.TrimSpace(line)) == 0 {
-		return nil, nil, false
-	}
-	i := bytes.IndexByte(line, l.delimiter)
-	if i < 0 {
-		return unquote(bytes.TrimSpace(line)), nil, false
-	}
-	return unquote(bytes.TrimSpace(line[:i])), line[i+1:], true
+	field, rest, _ = bytes.Cut(line, []byte{l.delimiter})
+	return unquote(bytes.TrimSpace(field)), rest
 }
 
 func unquote(field []byte) []byte {
@@ -214,13 +237,14 @@ func badField(field string) string {
 // cause says why a line does not fit the layout that the others have.
 func (l layout) cause(line []byte) string {
 	n := 0
-	for rest, more := line, true; more; {
+	for rest := line; len(rest) > 0; {
 		var field []byte
-		if field, rest, more = l.next(rest); field == nil {
+		var ok bool
+		if field, rest, _, ok = l.read(rest, nil); field == nil {
 			break
 		}
 		n++
-		if _, ok := l.number(field, nil); ok {
+		if ok {
 			continue
 		}
 		text := latin(field)

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 )
 
@@ -59,7 +60,8 @@ func readRows(t *Text, first int, form layout) (*plainRows, error) {
 	scratch := make([]byte, 0, 64)
 	for n := first; n <= t.Len(); n++ {
 		line := t.Bytes(n)
-		if len(bytes.TrimSpace(line)) == 0 {
+		fits := r.append(line, n, form, scratch)
+		if !fits && len(bytes.TrimSpace(line)) == 0 {
 			blanks++
 			continue
 		}
@@ -67,10 +69,7 @@ func readRows(t *Text, first int, form layout) (*plainRows, error) {
 			return nil, refuse(n, "samples", "%d blank lines inside the data: a second record?", blanks)
 		}
 		blanks = 0
-		if r.minus == 0 && bytes.Contains(line, unicodeMinus) {
-			r.minus = n
-		}
-		if r.append(line, n, form, scratch) {
+		if fits {
 			continue
 		}
 		if n == first {
@@ -133,15 +132,19 @@ func oddFirstLine(line []byte, n int, form layout) (count float64, err error) {
 func (r *plainRows) append(line []byte, n int, form layout, scratch []byte) bool {
 	i := 0
 	rows := len(r.line)
-	for rest, more := line, true; more; {
+	for rest := line; len(rest) > 0; {
 		var field []byte
-		if field, rest, more = form.next(rest); field == nil {
+		var v float64
+		var ok bool
+		if field, rest, v, ok = form.read(rest, scratch); field == nil {
 			break
 		}
-		v, ok := form.number(field, scratch)
 		if !ok || i == form.fields {
 			i = -1
 			break
+		}
+		if r.minus == 0 && field[0] == unicodeMinus[0] {
+			r.minus = n
 		}
 		r.values[i] = append(r.values[i], v)
 		if rows < plainHeadLines {
@@ -182,6 +185,10 @@ var sentinels = []float64{-999, -9999, 99999}
 // checkSentinels looks for values that stand far from all others and are
 // written like "no value": several are refused, one is a warning.
 func checkSentinels(c *Channel, rows *plainRows) error {
+	isSentinel := func(v float64) bool { return slices.Contains(sentinels, v) }
+	if !slices.ContainsFunc(c.Acceleration, isSentinel) {
+		return nil
+	}
 	for _, mark := range sentinels {
 		count, first, rest := 0, 0, 0.0
 		for i, v := range c.Acceleration {

@@ -432,16 +432,25 @@ func FuzzPlain(f *testing.F) {
 }
 
 func BenchmarkPlain(b *testing.B) {
-	data := []byte(strings.Join(timed(even(40000, 0.005), "%.3f", " "), "\n"))
-	text, err := NewText(data)
-	if err != nil {
-		b.Fatal(err)
-	}
-	b.SetBytes(int64(len(data)))
-	b.ReportAllocs()
-	for b.Loop() {
-		if _, err := (plain{}).Parse(text, Hints{Unit: "g"}); err != nil {
+	blanks := timed(even(40000, 0.005), "%.3f", " ")
+	for name, lines := range map[string][]string{
+		"blanks":         blanks,
+		"commas":         timed(even(40000, 0.005), "%.3f", ","),
+		"decimal commas": decimalComma(blanks),
+	} {
+		data := []byte(strings.Join(lines, "\n"))
+		text, err := NewText(data)
+		if err != nil {
 			b.Fatal(err)
 		}
+		b.Run(name, func(b *testing.B) {
+			b.SetBytes(int64(len(data)))
+			b.ReportAllocs()
+			for b.Loop() {
+				if _, err := (plain{}).Parse(text, Hints{Unit: "g"}); err != nil {
+					b.Fatal(err)
+				}
+			}
+		})
 	}
 }
