@@ -1,9 +1,6 @@
 package ingest
 
-import (
-	"math"
-	"strconv"
-)
+import "math"
 
 // maxCount is the largest count read, that of a 32-bit digitiser. Sums of
 // MaxFileSize/2 such counts fit an int64.
@@ -71,12 +68,20 @@ func skipBlanks(line []byte) []byte {
 
 func isBlank(b byte) bool { return b == ' ' || b == '\t' || b == '\f' || b == '\v' }
 
+// parseInteger reads an integer of at most maxCount with an optional sign.
 func parseInteger(b []byte) (int64, bool) {
-	if len(b) > 11 { // a sign and ten digits
+	if len(b) == 0 || len(b) > 11 { // a sign and ten digits
 		return 0, false
 	}
-	v, err := strconv.ParseInt(string(b), 10, 64)
-	return v, err == nil && -maxCount <= v && v <= maxCount
+	sign, first := signAt(b[0])
+	v, end := digitsAt(b, first, 0)
+	if end == first || end < len(b) || v > maxCount {
+		return 0, false
+	}
+	if sign != 0 {
+		return -int64(v), true
+	}
+	return int64(v), true
 }
 
 // removeMean turns counts into m/s² about the mean of the whole record, which

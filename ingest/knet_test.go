@@ -264,3 +264,16 @@ func FuzzKNET(f *testing.F) {
 	}
 	f.Fuzz(func(t *testing.T, data []byte) { fuzzFormat(t, knet{}, data) })
 }
+
+func TestParseInteger(t *testing.T) {
+	for text, want := range map[string]int64{"0": 0, "-0": 0, "7": 7, "+12345678": 12345678, "-2147483647": -2147483647, "00000000012": 12} {
+		if v, ok := parseInteger([]byte(text)); v != want || !ok {
+			t.Errorf("parseInteger(%q) = %d, %v, want %d", text, v, ok, want)
+		}
+	}
+	for _, text := range []string{"", "+", "-", "--1", "1.0", "1e3", "12a45678", "123456789a", "2147483648", "-2147483648", "000000000012", "1-2", "*****"} {
+		if v, ok := parseInteger([]byte(text)); ok {
+			t.Errorf("parseInteger(%q) = %d, want a refusal", text, v)
+		}
+	}
+}

@@ -1,0 +1,36 @@
+package ingest
+
+import (
+	"strings"
+	"testing"
+)
+
+// BenchmarkParse reads whole files, from bytes to checked channels, through
+// every reader.
+func BenchmarkParse(b *testing.B) {
+	const n = 20000
+	v2, cosmos, at2, counts := v2Bridge, cosmosBase, at2North, knetNS
+	v2.n, v2.x = n, ring(n, 25, 1.99, 0.999)
+	cosmos.x = ring(n, -213.4, 1.99, 0.999)
+	at2.x, at2.pair = ring(n, 0.3, 1.99, 0.999), "NPTS=  20000, DT=   .0050 SEC"
+	counts.seconds = n / counts.rate
+	for name, lines := range map[string][]string{
+		"california-v2": v2.lines(), "cosmos": cosmos.lines(), "at2": at2.lines(), "knet": counts.lines(),
+		"plain": timed(even(n, 0.005), "%.3f", " "),
+	} {
+		hints := Hints{}
+		if name == "plain" {
+			hints.Unit = "g"
+		}
+		data := []byte(strings.Join(lines, "\r\n"))
+		b.Run(name, func(b *testing.B) {
+			b.SetBytes(int64(len(data)))
+			b.ReportAllocs()
+			for b.Loop() {
+				if format, _, err := Parse("f", data, hints); err != nil || format != name {
+					b.Fatal(format, err)
+				}
+			}
+		})
+	}
+}
