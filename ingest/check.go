@@ -1,6 +1,9 @@
 package ingest
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // The limits outside which a number is taken for a mistake in unit or header.
 const (
@@ -32,17 +35,19 @@ func check(c *Channel) error {
 }
 
 func checkSamples(c *Channel) error {
-	peak, constant := 0.0, true
+	peak, first := 0.0, c.Acceleration[0]
 	for i, a := range c.Acceleration {
-		if math.IsNaN(a) || math.IsInf(a, 0) {
+		size := math.Abs(a)
+		if !(size <= math.MaxFloat64) {
 			return refuse(c.Line, "samples", "value %d is not finite", i+1)
 		}
 		c.Acceleration[i] = a + 0 // a negative zero is a zero
-		peak = max(peak, math.Abs(a))
-		constant = constant && a == c.Acceleration[0]
+		if size > peak {
+			peak = size
+		}
 	}
 	switch {
-	case constant:
+	case !slices.ContainsFunc(c.Acceleration, func(a float64) bool { return a != first }):
 		return refuse(c.Line, "samples", "all %d values are equal: a dead channel", len(c.Acceleration))
 	case peak > MaxPeakG*StandardGravity:
 		return refuse(c.Line, "samples", "peak of %.3g g is beyond %d g: wrong unit %q or scale?", peak/StandardGravity, MaxPeakG, c.Unit)

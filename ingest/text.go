@@ -136,10 +136,11 @@ func refuseBinary(data []byte) error {
 // without.
 func splitLines(data []byte) [][]byte {
 	lines := make([][]byte, 0, bytes.Count(data, []byte("\n"))+1)
+	returns := bytes.IndexByte(data, '\r') >= 0
 	for len(data) > 0 {
 		var line []byte
 		line, data, _ = bytes.Cut(data, []byte("\n"))
-		for {
+		for returns {
 			i := bytes.IndexByte(line, '\r')
 			if i < 0 {
 				break
