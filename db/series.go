@@ -8,37 +8,57 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"sync"
 
 	"github.com/klauspost/compress/zstd"
 )
 
-// The ways in which samples are laid out before compression. The first byte of
-// a series names its layout.
+// The layouts of samples. The first byte of a series names its own.
 const (
-	// layoutDecimal: decimals d (1 byte), unit u in m/s² (8 bytes), then the
-	// compressed differences of the integers k with sample = (k/10^d)·u, as
-	// signed varints. Text files hold such numbers.
+	// layoutDecimal: samples (k/10^d)·u in a unit of u m/s², d the same for all, as
+	// files of fixed decimals hold them.
 	layoutDecimal = 1
-	// layoutPlanes: the compressed bytes of the doubles, plane by plane, so that
-	// signs and exponents stand together.
-	layoutPlanes = 2
+	// layoutScientific: samples ±(m/10^j)·u, m of so many digits at most and a j for
+	// each, as files with exponents hold them.
+	layoutScientific = 2
+	// layoutPlanes: the bytes of the doubles, lowest first, each place of all
+	// samples together and compressed by itself.
+	layoutPlanes = 3
 )
-
-// maxDecimals is the finest decimal tried. Powers of ten up to 10^22 are exact
-// doubles, and k stays below 2^53 for any plausible acceleration.
-const maxDecimals = 12
 
 // EncodeSamples compresses samples without loss and returns them with their
 // digest. unitMPS2 is the value in m/s² of the unit in which the file wrote
 // them; a right one makes the result two to three times smaller, a wrong one
 // changes nothing else. The samples must be finite.
 func EncodeSamples(samples []float64, unitMPS2 float64) (data []byte, digest string) {
-	if ks, d, ok := decimalIntegers(samples, unitMPS2); ok {
-		data = append(data, layoutDecimal, byte(d))
-		data = binary.LittleEndian.AppendUint64(data, math.Float64bits(unitMPS2))
-		return encoder.EncodeAll(differences(ks), data), digestOf(samples)
+	r := rooms.Get().(*room)
+	defer rooms.Put(r)
+	r.grow(len(samples))
+	if unitMPS2 > 0 {
+		data = r.encodeDecimal(samples, unitMPS2)
+		if data == nil {
+			data = r.encodeScientific(samples, unitMPS2)
+		}
 	}
-	return encoder.EncodeAll(planes(samples), []byte{layoutPlanes}), digestOf(samples)
+	if data == nil {
+		data = r.encodePlanes(samples)
+	}
+	return data, digestOf(samples)
+}
+
+// room is what encoding or decoding one series needs besides its result.
+type room struct {
+	words []uint64 // one a sample
+	bytes []byte   // eight a sample
+}
+
+var rooms = sync.Pool{New: func() any { return new(room) }}
+
+func (r *room) grow(n int) {
+	if cap(r.words) < n {
+		r.words, r.bytes = make([]uint64, n), make([]byte, 8*n)
+	}
+	r.words, r.bytes = r.words[:n], r.bytes[:8*n]
 }
 
 // DecodeSamples restores n samples and compares them with the digest.
@@ -54,7 +74,8 @@ func DecodeSamples(data []byte, n int, digest string) ([]float64, error) {
 }
 
 var (
-	encoder = must(zstd.NewWriter(nil, zstd.WithEncoderLevel(zstd.SpeedFastest)))
+	// The digest guards the samples; a checksum of each frame would be a second.
+	encoder = must(zstd.NewWriter(nil, zstd.WithEncoderLevel(zstd.SpeedFastest), zstd.WithEncoderCRC(false)))
 	decoder = must(zstd.NewReader(nil, zstd.WithDecoderMaxMemory(1<<30)))
 )
 
@@ -66,59 +87,18 @@ func must[T any](v T, err error) T {
 	return v
 }
 
-// decimalIntegers finds the fewest decimals d for which every sample is
-// exactly (k/10^d)·unit with integer k, in the same two roundings that reading
-// the text makes: strconv rounds k/10^d once, the unit conversion once more.
-func decimalIntegers(samples []float64, unit float64) (ks []int64, decimals int, ok bool) {
-	if !(unit > 0) {
-		return nil, 0, false
-	}
-	ks = make([]int64, len(samples))
-	d, scale := 0, 1.0
-	for i := 0; i < len(samples); {
-		k := math.RoundToEven(samples[i] / unit * scale)
-		if math.Abs(k) < 1<<53 && math.Float64bits(decimal(int64(k), scale, unit)) == math.Float64bits(samples[i]) {
-			ks[i] = int64(k)
-			i++
-			continue
-		}
-		if d++; d > maxDecimals {
-			return nil, 0, false
-		}
-		for j := range i {
-			ks[j] *= 10
-			if ks[j] > 1<<53 || ks[j] < -1<<53 {
-				return nil, 0, false
-			}
-		}
-		scale *= 10
-	}
-	return ks, d, true
-}
-
-// decimal is the sample that the integer k stands for.
-func decimal(k int64, scale, unit float64) float64 {
-	return float64(k) / scale * unit
-}
-
-func differences(ks []int64) []byte {
-	out := make([]byte, 0, 3*len(ks))
-	last := int64(0)
-	for _, k := range ks {
-		out = binary.AppendVarint(out, k-last)
-		last = k
-	}
-	return out
-}
-
-func planes(samples []float64) []byte {
+func (r *room) encodePlanes(samples []float64) []byte {
 	n := len(samples)
-	out := make([]byte, 8*n)
 	for i, x := range samples {
 		bits := math.Float64bits(x)
-		for plane := range 8 {
-			out[plane*n+i] = byte(bits >> (8 * plane))
+		for at := i; at < len(r.bytes); at += n {
+			r.bytes[at] = byte(bits)
+			bits >>= 8
 		}
+	}
+	out := append(make([]byte, 0, 8*n), layoutPlanes)
+	for rest := r.bytes; len(rest) > 0; rest = rest[n:] {
+		out = encoder.EncodeAll(rest[:n], out)
 	}
 	return out
 }
@@ -127,47 +107,21 @@ func decodeSamples(data []byte, n int) ([]float64, error) {
 	if len(data) == 0 {
 		return nil, errors.New("no data")
 	}
+	r := rooms.Get().(*room)
+	defer rooms.Put(r)
 	switch data[0] {
 	case layoutDecimal:
-		return decodeDecimal(data[1:], n)
+		return r.decodeDecimal(data[1:], n)
+	case layoutScientific:
+		return r.decodeScientific(data[1:], n)
 	case layoutPlanes:
 		return decodePlanes(data[1:], n)
 	}
 	return nil, fmt.Errorf("unknown layout %d", data[0])
 }
 
-func decodeDecimal(data []byte, n int) ([]float64, error) {
-	if len(data) < 9 || int(data[0]) > maxDecimals {
-		return nil, errors.New("damaged head")
-	}
-	scale := math.Pow10(int(data[0]))
-	unit := math.Float64frombits(binary.LittleEndian.Uint64(data[1:9]))
-	raw, err := decoder.DecodeAll(data[9:], nil)
-	if err != nil {
-		return nil, err
-	}
-	if n > len(raw) {
-		return nil, fmt.Errorf("%d bytes cannot hold %d samples", len(raw), n)
-	}
-	samples := make([]float64, n)
-	k := int64(0)
-	for i := range samples {
-		delta, size := binary.Varint(raw)
-		if size <= 0 {
-			return nil, fmt.Errorf("series ends after %d of %d samples", i, n)
-		}
-		raw = raw[size:]
-		k += delta
-		samples[i] = decimal(k, scale, unit)
-	}
-	if len(raw) > 0 {
-		return nil, fmt.Errorf("series is longer than %d samples", n)
-	}
-	return samples, nil
-}
-
 func decodePlanes(data []byte, n int) ([]float64, error) {
-	raw, err := decoder.DecodeAll(data, nil)
+	raw, err := decoder.DecodeAll(data, make([]byte, 0, 8*min(n, 8*len(data))))
 	if err != nil {
 		return nil, err
 	}
@@ -185,15 +139,16 @@ func decodePlanes(data []byte, n int) ([]float64, error) {
 	return samples, nil
 }
 
+// digestOf returns the SHA-256 of the samples as little-endian doubles, in
+// hexadecimal.
 func digestOf(samples []float64) string {
-	buf := make([]byte, 0, 8*1024)
+	var buf [8 * 512]byte
 	h := sha256.New()
-	for chunk := range slices.Chunk(samples, 1024) {
-		buf = buf[:0]
-		for _, x := range chunk {
-			buf = binary.LittleEndian.AppendUint64(buf, math.Float64bits(x))
+	for chunk := range slices.Chunk(samples, 512) {
+		for i, x := range chunk {
+			binary.LittleEndian.PutUint64(buf[8*i:], math.Float64bits(x))
 		}
-		h.Write(buf)
+		h.Write(buf[:8*len(chunk)])
 	}
 	return hex.EncodeToString(h.Sum(nil))
 }
