@@ -22,6 +22,8 @@ type fast struct {
 	curve   float64 // (1 + 2ζ)·φ²
 	cuts    int     // pieces that a step is cut into for series
 	piece   slow    // the same oscillator, a piece being its step
+	parts   int     // those that rotations cut it into
+	part    slow    // and the oscillator for them
 	ringing ringing
 }
 
@@ -49,6 +51,8 @@ func newFast(index int, phase, damping float64) fast {
 		curve:   (1 + float64(2*damping)) * float64(phase*phase),
 		cuts:    cuts,
 		piece:   newPiece(phase/float64(cuts), damping),
+		parts:   partsOf(phase, damping),
+		part:    newPiece(phase/float64(partsOf(phase, damping)), damping),
 		ringing: newRinging(damping),
 	}
 }
@@ -116,12 +120,27 @@ func cutsOf(phase, damping float64) int {
 	return int(math.Ceil(phase * max(1/seriesPhase, 2.01*damping)))
 }
 
+// partPhase is the greatest phase of the parts that rotations cut steps into,
+// unless there were more than maxParts: the shorter they are, the closer bounds on
+// them, and the more there are.
+const (
+	partPhase = 0.3
+	maxParts  = 16
+)
+
+func partsOf(phase, damping float64) int {
+	return max(cutsOf(phase, damping), min(int(math.Ceil(phase/partPhase)), maxParts))
+}
+
 // newPiece returns what follow needs of an oscillator for steps of the given
 // phase, such as cutsOf gives.
 func newPiece(phase, damping float64) slow {
 	r := respond(phase, damping)
-	_, growth, _ := bounds(phase, damping)
-	return slow{phase: phase, exact: r.recurrence(), series: newSeries(phase, damping), growth: growth}
+	reach, growth, _ := bounds(phase, damping)
+	return slow{
+		phase: phase, damping: damping, exact: r.recurrence(), inverse: 1 / r.impulse.hi,
+		series: newSeries(phase, damping), reach: reach, growth: growth,
+	}
 }
 
 // follow takes one step in pieces short enough for their series.

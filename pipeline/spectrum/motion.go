@@ -36,6 +36,7 @@ type search struct {
 	flags      []uint32      // of each block of steps: the lanes that it may hold the maximum of
 	done       []uint32      // of each block of steps: the lanes that it was searched for
 	rows       []kernel.Row  // slow: u at each sample of a block
+	rowFlags   []uint32      // of each sample of a block: the lanes that can matter there
 	states     []kernel.Mark // fast: the state at the start of each step of a block
 	stepFlags  []uint32      // of each step of a block: the lanes that may have the maximum there
 	seen       []uint32      // of each step of a block: the lanes that it is done with
@@ -48,7 +49,7 @@ type search struct {
 
 func newMotion() *motion {
 	return &motion{search: search{
-		rows:   make([]kernel.Row, blockSteps+1),
+		rows: make([]kernel.Row, blockSteps+1), rowFlags: make([]uint32, blockSteps+1),
 		states: make([]kernel.Mark, blockSteps), stepFlags: make([]uint32, blockSteps), seen: make([]uint32, blockSteps),
 		stepScreen: new(kernel.StepScreen), screen: new(kernel.Screen),
 		top: new(kernel.Row), start: new(kernel.Mark),
@@ -59,12 +60,8 @@ func newMotion() *motion {
 // marching, and whether there is such: 0 for fewer than two samples or for no
 // motion at all, NaN where a sample is not finite.
 func (m *motion) load(samples []float64) (known float64, done bool) {
-	top, sum := 0.0, 0.0
-	for _, a := range samples {
-		top = max(top, math.Abs(a))
-		sum += a - a // 0, or NaN where a is not finite
-	}
-	if math.IsNaN(sum) {
+	top := greatest(samples)
+	if math.IsNaN(top) {
 		return math.NaN(), true
 	}
 	if len(samples) < 2 || top == 0 {
@@ -73,6 +70,16 @@ func (m *motion) load(samples []float64) (known float64, done bool) {
 	m.scale(samples, top)
 	m.measure()
 	return 0, false
+}
+
+// greatest returns the greatest |a|, NaN where one is not finite.
+func greatest(samples []float64) float64 {
+	top, sum := 0.0, 0.0
+	for _, a := range samples {
+		top = max(top, math.Abs(a))
+		sum += a - a // 0, or NaN where a is not finite
+	}
+	return top + sum
 }
 
 func (m *motion) scale(samples []float64, top float64) {

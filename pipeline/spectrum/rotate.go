@@ -5,10 +5,12 @@ import (
 	"fmt"
 	"math"
 	"slices"
+
+	"swaybook/pipeline/internal/kernel"
 )
 
 // Directions is the number of directions of RotD50 and RotD100, 1° apart.
-const Directions = 180
+const Directions = kernel.Directions
 
 // ErrDirections is wrapped by the error of RightAngle for components whose
 // directions are too near to each other.
@@ -68,12 +70,63 @@ func (s *Solver) RotD(first, second, sdFirst, sdSecond []float64) (rotd50, rotd1
 	if len(sdFirst) != s.oscillators || len(sdSecond) != s.oscillators {
 		panic("spectrum: number of known SD is not the number of oscillators")
 	}
+	if s.method != NigamJennings || !inRange(sdFirst, sdSecond) {
+		return s.solveDirections(first, second)
+	}
+	rotd50, rotd100 = make([]float64, s.oscillators), make([]float64, s.oscillators)
+	r := s.pairs.Get().(*rotation)
+	defer s.pairs.Put(r)
+	if known, done := r.load(first, second); done {
+		for i := range rotd50 {
+			rotd50[i], rotd100[i] = known, known
+		}
+		return rotd50, rotd100
+	}
+	r.prepare(s.strides)
+	exponent := r.pair[0].exponent
+	r.first, r.second = s.unscaled(r.first, sdFirst, exponent), s.unscaled(r.second, sdSecond, exponent)
+	for i := range s.slow {
+		s.slow[i].rotate(r, rotd50, rotd100)
+	}
+	for i := range s.fast {
+		s.fast[i].rotate(r, rotd50, rotd100)
+	}
+	for i := range s.free {
+		s.free[i].rotate(r, rotd50, rotd100)
+	}
+	for i := range rotd50 {
+		rotd50[i] = math.Ldexp(rotd50[i]*s.stepS*s.stepS, exponent)
+		rotd100[i] = max(math.Ldexp(rotd100[i]*s.stepS*s.stepS, exponent), sdFirst[i], sdSecond[i])
+	}
+	return rotd50, rotd100
+}
+
+// inRange reports whether D, of which one may be 0, are neither too small nor too
+// great for their digits; NaN are in range, since they come from samples.
+func inRange(first, second []float64) bool {
+	for i, d := range first {
+		if d = max(d, second[i]); d < 0x1p-900 || math.IsInf(d, 0) {
+			return false
+		}
+	}
+	return true
+}
+
+// unscaled sets dst to D in the units of a motion.
+func (s *Solver) unscaled(dst, sd []float64, exponent int) []float64 {
+	dst = resize(dst, len(sd))
+	for i, d := range sd {
+		dst[i] = math.Ldexp(d, -exponent) / s.stepS / s.stepS
+	}
+	return dst
+}
+
+// solveDirections is RotD by the D of every direction.
+func (s *Solver) solveDirections(first, second []float64) (rotd50, rotd100 []float64) {
 	all := make([][]float64, Directions)
 	for k := range all {
 		all[k] = s.SD(nil, turned(first, second, k))
 	}
-	copy(all[0], sdFirst)
-	copy(all[Directions/2], sdSecond)
 	rotd50, rotd100 = make([]float64, s.oscillators), make([]float64, s.oscillators)
 	d := make([]float64, Directions)
 	for i := range rotd50 {
@@ -81,42 +134,20 @@ func (s *Solver) RotD(first, second, sdFirst, sdSecond []float64) (rotd50, rotd1
 			d[k] = all[k][i]
 		}
 		slices.Sort(d)
-		rotd50[i] = (d[Directions/2-1] + d[Directions/2]) / 2
-		rotd100[i] = d[Directions-1]
+		rotd50[i], rotd100[i] = middle(d), d[Directions-1]
 	}
 	return rotd50, rotd100
 }
 
+// middle returns the median of one number a direction, in order.
+func middle(d []float64) float64 { return float64(0.5 * (d[half-1] + d[half])) }
+
 // turned returns the component in direction k.
 func turned(first, second []float64, k int) []float64 {
-	sin, cos := math.Sincos(float64(k) * math.Pi / Directions)
+	cos, sin := compass.Cos[k], compass.Sin[k]
 	out := make([]float64, len(first))
 	for i, a := range first {
-		out[i] = float64(a*cos) + float64(second[i]*sin)
+		out[i] = math.FMA(cos, a, float64(sin*second[i]))
 	}
 	return out
-}
-
-// GroundPeaks are PGA in m/s², PGV in m/s and PGD in m.
-type GroundPeaks struct{ PGA, PGV, PGD float64 }
-
-// RotDPeaks returns the median and the maximum over the directions of RotD of
-// the peaks of a pair of components at a right angle, each as Peaks takes them.
-// It panics if lengths differ.
-func RotDPeaks(stepS float64, first, second []float64) (rotd50, rotd100 GroundPeaks) {
-	if len(first) != len(second) {
-		panic("spectrum: components of a pair differ in length")
-	}
-	var a, v, u [Directions]float64
-	for k := range Directions {
-		a[k], v[k], u[k] = Peaks(stepS, turned(first, second, k))
-	}
-	for _, list := range []*[Directions]float64{&a, &v, &u} {
-		slices.Sort(list[:])
-	}
-	middle := func(list *[Directions]float64) float64 {
-		return (list[Directions/2-1] + list[Directions/2]) / 2
-	}
-	const last = Directions - 1
-	return GroundPeaks{middle(&a), middle(&v), middle(&u)}, GroundPeaks{a[last], v[last], u[last]}
 }

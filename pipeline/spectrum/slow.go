@@ -16,6 +16,9 @@ type slow struct {
 	ringing ringing
 	reach   float64 // α: the displacement that unit ground acceleration can add between samples
 	growth  float64 // β: what between samples multiplies
+	free    bool    // whether rotations take it for fast
+	parts   int     // those that rotations cut a step into
+	part    *slow   // the oscillator for them, if more than one
 	tail    int     // steps of free ringing for sampled maxima, 0 for exact ones
 	norm    energy  // of such ringing
 }
@@ -50,6 +53,11 @@ func bounds(phase, damping float64) (reach, growth float64, ok bool) {
 	return reach, growth, growth > 0 && growth <= maxGrowth
 }
 
+// freeDamping is the damping below which rotations take a slow oscillator for a
+// fast one, unless they look at whole steps. Its motion goes on long after the
+// ground's, and the free vibration shows best that it grows no more.
+const freeDamping = 0.005
+
 // newSlow returns the exact slow form, or false if the fast one is called for.
 func newSlow(index int, phase, damping float64) (slow, bool) {
 	reach, growth, ok := bounds(phase, damping)
@@ -57,12 +65,18 @@ func newSlow(index int, phase, damping float64) (slow, bool) {
 		return slow{}, false
 	}
 	r := respond(phase, damping)
-	return slow{
+	o := slow{
 		index: index, phase: phase, damping: damping,
 		exact: r.recurrence(), inverse: 1 / r.impulse.hi, eq: r.difference(),
 		series: newSeries(phase, damping), ringing: newRinging(damping),
-		reach: reach, growth: growth,
-	}, true
+		reach: reach, growth: growth, parts: partsOf(phase, damping),
+	}
+	o.free = o.parts > 1 && phase > 0.9 && damping < freeDamping
+	if o.parts > 1 {
+		part := newPiece(phase/float64(o.parts), damping)
+		o.part = &part
+	}
+	return o, true
 }
 
 // first returns the state at sample 1. The oscillator is at rest at sample 0,

@@ -28,7 +28,9 @@ type Solver struct {
 	slow        []slowGroup
 	strides     [len(strides)]bool // those in use
 	fast        []fastGroup
-	scratch     *sync.Pool // of *motion
+	free        []fastGroup // slow ones that rotations take for fast
+	scratch     *sync.Pool  // of *motion
+	pairs       *sync.Pool  // of *rotation
 }
 
 // NewSolver prepares the coefficients of the oscillators, in any order and
@@ -49,6 +51,7 @@ func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver,
 	s := &Solver{
 		method: method, stepS: stepS, oscillators: len(oscillators),
 		scratch: &sync.Pool{New: func() any { return newMotion() }},
+		pairs:   &sync.Pool{New: func() any { return newRotation() }},
 	}
 	var list forms
 	for i, o := range oscillators {
@@ -61,7 +64,7 @@ func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver,
 		s.strides[i] = len(strided) > 0
 	}
 	s.slow = append(s.slow, newSlowGroups(list.slow)...)
-	s.fast = newFastGroups(list.fast)
+	s.fast, s.free = newFastGroups(list.fast), newFastGroups(list.free)
 	return s, nil
 }
 
@@ -70,6 +73,7 @@ type forms struct {
 	strided [len(strides)][]slow
 	slow    []slow
 	fast    []fast
+	free    []fast
 }
 
 func (s *Solver) add(list *forms, index int, o Oscillator) error {
@@ -84,6 +88,9 @@ func (s *Solver) add(list *forms, index int, o Oscillator) error {
 		list.slow = append(list.slow, s.method.newNewmark(index, phase, o.Damping))
 	} else if one, ok := newSlow(index, phase, o.Damping); !ok {
 		list.fast = append(list.fast, newFast(index, phase, o.Damping))
+	} else if one.free {
+		list.slow = append(list.slow, one)
+		list.free = append(list.free, newFast(index, phase, o.Damping))
 	} else if i := strideOf(phase, o.Damping); i >= 0 {
 		list.strided[i] = append(list.strided[i], one)
 	} else {

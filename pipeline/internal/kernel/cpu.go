@@ -22,6 +22,13 @@ type level struct {
 	marchStride   func(q *Stride, from, to *Mark, inputs *Input, steps int)
 	mix           func(inputs, shares *Input, ground *float64, stride, n int)
 	greatest      func(top *Row, values *float64, stride, n int)
+	widen         func(o *Outline, c *Compass, points *Point, n int)
+	above         func(o *Outline, x float64, set *Above)
+	screenOrbits  func(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32)
+	exceeds       func(o *Outline, c, twice *Compass, f *Form) uint64
+	greatestOf    func(o *Outline) float64
+	project       func(rows *Row, rays *Rays, points *Point, n int, want uint32)
+	screenFence   func(f *Fence, x, y *Row, flags *uint32, n int, want uint32)
 }
 
 var portable = level{
@@ -31,6 +38,8 @@ var portable = level{
 	screen: screenGeneric, screenSquares: screenSquaresGeneric,
 	screenSteps: screenStepsGeneric, greatest: greatestGeneric,
 	marchStride: marchStrideGeneric, mix: mixGeneric,
+	widen: widenGeneric, above: aboveGeneric, screenFence: screenFenceGeneric,
+	greatestOf: greatestOfGeneric, exceeds: exceedsGeneric, screenOrbits: screenOrbitsGeneric, project: projectGeneric,
 }
 
 // levels are the kernels that this processor runs, the fastest first.

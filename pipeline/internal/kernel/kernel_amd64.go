@@ -54,6 +54,41 @@ func mixAVX2(inputs *float64, shares *float64, ground *float64, stride int, n in
 //go:noescape
 func greatestAVX2(top *float64, values *float64, stride int, n int)
 
+// widenAVX2 is widenGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func widenAVX2(o *float64, c *float64, points *float64, n int)
+
+// aboveAVX2 is aboveGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func aboveAVX2(o *float64, x float64, set *uint64)
+
+// exceedsAVX2 is exceedsGeneric for vectors of 4 lanes, but for the value of what is not 0.
+//
+//go:noescape
+func exceedsAVX2(o *float64, c *float64, twice *float64, form *float64) uint64
+
+// screenOrbitsAVX2 is screenOrbitsGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func screenOrbitsAVX2(fence *float64, x *float64, y *float64, lines *float64, flags *uint32, n int, want uint32)
+
+// screenFenceAVX2 is screenFenceGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func screenFenceAVX2(fence *float64, x *float64, y *float64, flags *uint32, n int, want uint32)
+
+// greatestOfAVX2 is greatestOfGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func greatestOfAVX2(o *float64) float64
+
+// projectAVX2 is projectGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func projectAVX2(rows *float64, rays *float64, points *float64, n int, want uint32)
+
 // marchSlowAVX512 is marchSlowGeneric for vectors of 8 lanes.
 //
 //go:noescape
@@ -103,3 +138,38 @@ func mixAVX512(inputs *float64, shares *float64, ground *float64, stride int, n 
 //
 //go:noescape
 func greatestAVX512(top *float64, values *float64, stride int, n int)
+
+// widenAVX512 is widenGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func widenAVX512(o *float64, c *float64, points *float64, n int)
+
+// aboveAVX512 is aboveGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func aboveAVX512(o *float64, x float64, set *uint64)
+
+// exceedsAVX512 is exceedsGeneric for vectors of 8 lanes, but for the value of what is not 0.
+//
+//go:noescape
+func exceedsAVX512(o *float64, c *float64, twice *float64, form *float64) uint64
+
+// screenOrbitsAVX512 is screenOrbitsGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func screenOrbitsAVX512(fence *float64, x *float64, y *float64, lines *float64, flags *uint32, n int, want uint32)
+
+// screenFenceAVX512 is screenFenceGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func screenFenceAVX512(fence *float64, x *float64, y *float64, flags *uint32, n int, want uint32)
+
+// greatestOfAVX512 is greatestOfGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func greatestOfAVX512(o *float64) float64
+
+// projectAVX512 is projectGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func projectAVX512(rows *float64, rays *float64, points *float64, n int, want uint32)

@@ -21,6 +21,8 @@ func vectorLevels() []level {
 			greatest:      maximum(greatestAVX512),
 			marchStride:   strideMarch(marchStrideAVX512),
 			mix:           mixing(mixAVX512),
+			widen:         widening(widenAVX512), above: masking(aboveAVX512), screenFence: fencing(screenFenceAVX512),
+			greatestOf: greatestNumber(greatestOfAVX512), exceeds: exceeding(exceedsAVX512), screenOrbits: orbiting(screenOrbitsAVX512), project: projecting(projectAVX512),
 		})
 	}
 	if cpu.X86.HasAVX2 && cpu.X86.HasFMA {
@@ -36,6 +38,8 @@ func vectorLevels() []level {
 			greatest:      maximum(greatestAVX2),
 			marchStride:   strideMarch(marchStrideAVX2),
 			mix:           mixing(mixAVX2),
+			widen:         widening(widenAVX2), above: masking(aboveAVX2), screenFence: fencing(screenFenceAVX2),
+			greatestOf: greatestNumber(greatestOfAVX2), exceeds: exceeding(exceedsAVX2), screenOrbits: orbiting(screenOrbitsAVX2), project: projecting(projectAVX2),
 		})
 	}
 	return list
@@ -97,5 +101,41 @@ func strideMarch(f func(q, weights, from, to, inputs *float64, steps int)) func(
 func mixing(f func(inputs, shares, ground *float64, stride, n int)) func(*Input, *Input, *float64, int, int) {
 	return func(inputs, shares *Input, ground *float64, stride, n int) {
 		f(&inputs[0], &shares[0], ground, stride, n)
+	}
+}
+
+func widening(f func(o, c, points *float64, n int)) func(*Outline, *Compass, *Point, int) {
+	return func(o *Outline, c *Compass, points *Point, n int) { f(&o[0], &c.Cos[0], &points.X, n) }
+}
+
+func masking(f func(o *float64, x float64, set *uint64)) func(*Outline, float64, *Above) {
+	return func(o *Outline, x float64, set *Above) { f(&o[0], x, &set[0]) }
+}
+
+func fencing(f func(fence, x, y *float64, flags *uint32, n int, want uint32)) func(*Fence, *Row, *Row, *uint32, int, uint32) {
+	return func(fence *Fence, x, y *Row, flags *uint32, n int, want uint32) {
+		f(&fence.Sides[0].X[0], &x[0], &y[0], flags, n, want)
+	}
+}
+
+func greatestNumber(f func(o *float64) float64) func(*Outline) float64 {
+	return func(o *Outline) float64 { return f(&o[0]) }
+}
+
+func projecting(f func(rows, rays, points *float64, n int, want uint32)) func(*Row, *Rays, *Point, int, uint32) {
+	return func(rows *Row, rays *Rays, points *Point, n int, want uint32) {
+		f(&rows[0], &rays.Cos[0], &points.X, n, want)
+	}
+}
+
+func exceeding(f func(o, c, twice, form *float64) uint64) func(*Outline, *Compass, *Compass, *Form) uint64 {
+	return func(o *Outline, c, twice *Compass, form *Form) uint64 {
+		return f(&o[0], &c.Cos[0], &twice.Cos[0], &form.Middle)
+	}
+}
+
+func orbiting(f func(fence, x, y, lines *float64, flags *uint32, n int, want uint32)) func(*OrbitFence, *Mark, *Mark, *Line, *uint32, int, uint32) {
+	return func(fence *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32) {
+		f(&fence.Sides[0].XX[0], &x.X[0], &y.X[0], &lines.First, flags, n, want)
 	}
 }

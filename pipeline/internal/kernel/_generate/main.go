@@ -48,6 +48,13 @@ func main() {
 		l.marchStride()
 		l.mix()
 		l.greatest()
+		l.widen()
+		l.above()
+		l.exceeds()
+		l.screenOrbits()
+		l.screenFence()
+		l.greatestOf()
+		l.project()
 	}
 	Generate()
 }

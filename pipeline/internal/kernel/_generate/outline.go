@@ -1,0 +1,361 @@
+package main
+
+import (
+	"fmt"
+
+	. "github.com/mmcloughlin/avo/build"
+	"github.com/mmcloughlin/avo/operand"
+	"github.com/mmcloughlin/avo/reg"
+)
+
+// outline is the size in bytes of a kernel.Outline, padded to whole passes.
+const outline = 192 * 8
+
+// widen takes as many directions as are in flight through all points.
+func (l level) widen() {
+	TEXT("widen"+l.name, NOSPLIT, "func(o, c, points *float64, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("widen%s is widenGeneric for vectors of %d lanes.", l.name, l.width))
+	o, c := Load(Param("o"), GP64()), Load(Param("c"), GP64())
+	points, n := Load(Param("points"), GP64()), Load(Param("n"), GP64())
+	mask := l.absolute()
+	wide := l
+	wide.vectors = l.outlineVectors()
+	span := wide.vectors * l.width * 8
+	left := GP64()
+	MOVQ(operand.U64(uint64(outline/span)), left)
+	Label("directions")
+	top, cos, sin := wide.some(), wide.coefficient(c, 0, 0, l.keep), make([]operand.Op, wide.vectors)
+	for v := range top {
+		VMOVUPD(l.at(o, 0, 0, v), top[v])
+		sin[v] = operand.Mem{Base: c, Disp: outline + v*l.width*8}
+		if l.keep {
+			x := l.vector()
+			VMOVUPD(sin[v], x)
+			sin[v] = x
+		}
+	}
+	p, m := GP64(), GP64()
+	MOVQ(points, p)
+	MOVQ(n, m)
+	Label("point")
+	x, y := l.vector(), l.vector()
+	VBROADCASTSD(operand.Mem{Base: p}, x)
+	VBROADCASTSD(operand.Mem{Base: p, Disp: 8}, y)
+	for v := range top {
+		t := l.vector()
+		VMULPD(sin[v], y, t)
+		VFMADD231PD(cos[v], x, t)
+		l.and(mask, t, t)
+		VMAXPD(t, top[v], top[v])
+	}
+	ADDQ(operand.Imm(16), p)
+	DECQ(m)
+	JNZ(operand.LabelRef("point"))
+	for v := range top {
+		VMOVUPD(top[v], l.at(o, 0, 0, v))
+	}
+	ADDQ(operand.U32(uint32(span)), o)
+	ADDQ(operand.U32(uint32(span)), c)
+	DECQ(left)
+	JNZ(operand.LabelRef("directions"))
+	VZEROUPPER()
+	RET()
+}
+
+// outlineVectors is how many vectors of directions are in flight.
+func (l level) outlineVectors() int {
+	if l.keep {
+		return 8
+	}
+	return 6
+}
+
+// above compares and collects the bits, a word at a time.
+func (l level) above() {
+	TEXT("above"+l.name, NOSPLIT, "func(o *float64, x float64, set *uint64)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("above%s is aboveGeneric for vectors of %d lanes.", l.name, l.width))
+	o, set := Load(Param("o"), GP64()), Load(Param("set"), GP64())
+	x, limit := XMM(), l.vector()
+	Load(Param("x"), x)
+	VBROADCASTSD(x, limit)
+	const word = 64
+	for w := range outline / 8 / word {
+		sum := GP64()
+		XORQ(sum, sum)
+		for v := word/l.width - 1; v >= 0; v-- {
+			y, bits := l.vector(), GP32()
+			VMOVUPD(operand.Mem{Base: o, Disp: (w*word + v*l.width) * 8}, y)
+			l.compare(y, limit, bits)
+			SHLQ(operand.U8(l.width), sum)
+			ORQ(bits.As64(), sum)
+		}
+		MOVQ(sum, operand.Mem{Base: set, Disp: w * 8})
+	}
+	VZEROUPPER()
+	RET()
+}
+
+// exceeds collects the bits of all directions.
+func (l level) exceeds() {
+	TEXT("exceeds"+l.name, NOSPLIT, "func(o, c, twice, form *float64) uint64")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("exceeds%s is exceedsGeneric for vectors of %d lanes, but for the value of what is not 0.", l.name, l.width))
+	o, c := Load(Param("o"), GP64()), Load(Param("c"), GP64())
+	twice, form := Load(Param("twice"), GP64()), Load(Param("form"), GP64())
+	mask, zero := l.absolute(), l.vector()
+	l.zero(zero)
+	f := make([]reg.VecVirtual, 8)
+	for i := range f {
+		f[i] = l.vector()
+		VBROADCASTSD(operand.Mem{Base: form, Disp: i * 8}, f[i])
+	}
+	sum := GP32()
+	XORL(sum, sum)
+	for v := range outline / 8 / l.width {
+		x, p, q, bits := l.vector(), l.vector(), l.vector(), GP32()
+		for i, t := range []reg.VecVirtual{p, q} {
+			VMULPD(operand.Mem{Base: c, Disp: outline + v*l.width*8}, f[5+2*i], t)
+			VFMADD231PD(l.at(c, 0, 0, v), f[4+2*i], t)
+			l.and(mask, t, t)
+		}
+		VMAXPD(q, p, p)
+		VMOVUPD(l.at(o, 0, 0, v), x)
+		VMAXPD(f[3], x, x)
+		VSUBPD(p, x, x)
+		VMAXPD(zero, x, x)
+		VMULPD(x, x, x)
+		VMOVAPD(f[0], q)
+		VFMADD231PD(l.at(twice, 0, 0, v), f[1], q)
+		VFMADD231PD(operand.Mem{Base: twice, Disp: outline + v*l.width*8}, f[2], q)
+		l.compare(q, x, bits)
+		ORL(bits, sum)
+	}
+	Store(sum.As64(), ReturnIndex(0))
+	VZEROUPPER()
+	RET()
+}
+
+// greatestOf takes the maximum of vectors, then of the lanes of one.
+func (l level) greatestOf() {
+	TEXT("greatestOf"+l.name, NOSPLIT, "func(o *float64) float64")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("greatestOf%s is greatestOfGeneric for vectors of %d lanes.", l.name, l.width))
+	o := Load(Param("o"), GP64())
+	sum := make([]reg.VecVirtual, 4)
+	for v := range sum {
+		sum[v] = l.vector()
+		l.zero(sum[v])
+	}
+	for v := range outline / 8 / l.width {
+		VMAXPD(l.at(o, 0, 0, v), sum[v%4], sum[v%4])
+	}
+	VMAXPD(sum[1], sum[0], sum[0])
+	VMAXPD(sum[3], sum[2], sum[2])
+	VMAXPD(sum[2], sum[0], sum[0])
+	if l.width == 8 {
+		half := YMM()
+		VEXTRACTF64X4(operand.U8(1), sum[0], half)
+		VMAXPD(half, sum[0].AsY(), sum[0].AsY())
+	}
+	x, y := sum[0].AsX(), XMM()
+	VEXTRACTF128(operand.U8(1), sum[0].AsY(), y)
+	VMAXPD(y, x, x)
+	VPERMILPD(operand.U8(1), x, y)
+	VMAXSD(y, x, x)
+	Store(x, ReturnIndex(0))
+	VZEROUPPER()
+	RET()
+}
+
+// project takes a vector of directions through all points, without those that
+// hold no lane asked for.
+func (l level) project() {
+	TEXT("project"+l.name, NOSPLIT, "func(rows, rays, points *float64, n int, want uint32)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("project%s is projectGeneric for vectors of %d lanes.", l.name, l.width))
+	rows, rays := Load(Param("rows"), GP64()), Load(Param("rays"), GP64())
+	points, n := Load(Param("points"), GP64()), Load(Param("n"), GP64())
+	want := Load(Param("want"), GP32())
+	for v := range lanes / l.width {
+		next := fmt.Sprintf("skip%d", v)
+		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
+		JZ(operand.LabelRef(next))
+		cos, sin, x, y := l.vector(), l.vector(), l.vector(), l.vector()
+		VMOVUPD(l.at(rays, 0, 0, v), cos)
+		VMOVUPD(l.at(rays, 1, 0, v), sin)
+		p, r, m := GP64(), GP64(), GP64()
+		MOVQ(points, p)
+		MOVQ(rows, r)
+		MOVQ(n, m)
+		loop := fmt.Sprintf("point%d", v)
+		Label(loop)
+		VBROADCASTSD(operand.Mem{Base: p}, x)
+		VBROADCASTSD(operand.Mem{Base: p, Disp: 8}, y)
+		VMULPD(sin, y, y)
+		VFMADD231PD(cos, x, y)
+		VMOVUPD(y, l.at(r, 0, 0, v))
+		ADDQ(operand.Imm(16), p)
+		ADDQ(operand.U32(row), r)
+		DECQ(m)
+		JNZ(operand.LabelRef(loop))
+		Label(next)
+	}
+	VZEROUPPER()
+	RET()
+}
+
+// fenceSides and orbitSides are kernel.Sides and kernel.OrbitSides.
+const fenceSides, orbitSides = 10, 30
+
+// screenFence takes a vector of lanes through all rows, without those that hold
+// no lane asked for.
+func (l level) screenFence() {
+	TEXT("screenFence"+l.name, NOSPLIT, "func(fence, x, y *float64, flags *uint32, n int, want uint32)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("screenFence%s is screenFenceGeneric for vectors of %d lanes.", l.name, l.width))
+	fence, x, y := Load(Param("fence"), GP64()), Load(Param("x"), GP64()), Load(Param("y"), GP64())
+	flags, n := Load(Param("flags"), GP64()), Load(Param("n"), GP64())
+	want := Load(Param("want"), GP32())
+	mask := l.absolute()
+	for v := range lanes / l.width {
+		next := fmt.Sprintf("skip%d", v)
+		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
+		JZ(operand.LabelRef(next))
+		l.fenceVector(fence, x, y, flags, n, want, v, mask)
+		Label(next)
+	}
+	VZEROUPPER()
+	RET()
+}
+
+func (l level) fenceVector(fence, x, y, flags, n, want reg.Register, v int, mask reg.VecVirtual) {
+	xs, ys, out, left := GP64(), GP64(), GP64(), GP64()
+	MOVQ(x, xs)
+	MOVQ(y, ys)
+	MOVQ(flags, out)
+	MOVQ(n, left)
+	sides := make([]operand.Op, 2*fenceSides)
+	for i := range sides {
+		sides[i] = l.at(fence, i, 0, v)
+		if l.keep {
+			c := l.vector()
+			VMOVUPD(sides[i], c)
+			sides[i] = c
+		}
+	}
+	limit, bits := l.vector(), GP32()
+	VMOVUPD(l.at(fence, 2*fenceSides, 0, v), limit)
+	input{}.loop(fmt.Sprintf("line%d", v), out, left, nil, func() {
+		u, w, top := l.vector(), l.vector(), l.vector()
+		VMOVUPD(l.at(xs, 0, 0, v), u)
+		VMOVUPD(l.at(ys, 0, 0, v), w)
+		for k := range fenceSides {
+			t := l.vector()
+			if k == 0 {
+				t = top
+			}
+			VMULPD(sides[2*k+1], w, t)
+			VFMADD231PD(sides[2*k], u, t)
+			l.and(mask, t, t)
+			if k > 0 {
+				VMAXPD(t, top, top)
+			}
+		}
+		l.compare(top, limit, bits)
+		if v > 0 {
+			SHLL(operand.U8(v*l.width), bits)
+		}
+		ANDL(want, bits)
+		ORL(bits, operand.Mem{Base: out})
+		ADDQ(operand.U32(row), xs)
+		ADDQ(operand.U32(row), ys)
+		SUBQ(operand.Imm(4), out) // the loop moves on by 8
+	})
+}
+
+// screenOrbits takes a vector of lanes through all rows, without those that hold
+// no lane asked for.
+func (l level) screenOrbits() {
+	TEXT("screenOrbits"+l.name, NOSPLIT, "func(fence, x, y, lines *float64, flags *uint32, n int, want uint32)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("screenOrbits%s is screenOrbitsGeneric for vectors of %d lanes.", l.name, l.width))
+	in := map[string]reg.Register{}
+	for _, name := range []string{"fence", "x", "y", "lines", "flags", "n"} {
+		in[name] = Load(Param(name), GP64())
+	}
+	want := Load(Param("want"), GP32())
+	zero, one, word, half := l.vector(), l.vector(), GP64(), XMM()
+	l.zero(zero)
+	MOVQ(operand.U64(0x3ff0000000000000), word) // 1
+	VMOVQ(word, half)
+	VBROADCASTSD(half, one)
+	for v := range lanes / l.width {
+		next := fmt.Sprintf("skip%d", v)
+		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
+		JZ(operand.LabelRef(next))
+		l.orbitVector(in, want, v, zero, one)
+		Label(next)
+	}
+	VZEROUPPER()
+	RET()
+}
+
+func (l level) orbitVector(in map[string]reg.Register, want reg.Register, v int, zero, one reg.VecVirtual) {
+	x, y, lines, out, left := GP64(), GP64(), GP64(), GP64(), GP64()
+	MOVQ(in["x"], x)
+	MOVQ(in["y"], y)
+	MOVQ(in["lines"], lines)
+	MOVQ(in["flags"], out)
+	MOVQ(in["n"], left)
+	fence, bits, inner := in["fence"], GP32(), GP32()
+	within := fmt.Sprintf("within%d", v)
+	input{}.loop(fmt.Sprintf("line%d", v), out, left, nil, func() {
+		a, b, c, d := l.vector(), l.vector(), l.vector(), l.vector()
+		VMOVUPD(l.at(x, markX, 0, v), a)
+		VMOVUPD(l.at(x, markY, 0, v), b)
+		VMOVUPD(l.at(y, markX, 0, v), c)
+		VMOVUPD(l.at(y, markY, 0, v), d)
+		xx, xy, yy, top := l.vector(), l.vector(), l.vector(), l.vector()
+		VMULPD(b, b, xx)
+		VFMADD231PD(a, a, xx)
+		VMULPD(d, d, yy)
+		VFMADD231PD(c, c, yy)
+		r, s := l.vector(), l.vector()
+		VMOVAPD(one, r)
+		VBROADCASTSD(operand.Mem{Base: lines}, s)
+		VFNMADD231PD(l.at(fence, 3*orbitSides, 0, v), s, r)
+		VBROADCASTSD(operand.Mem{Base: lines, Disp: 8}, s)
+		VFNMADD231PD(l.at(fence, 3*orbitSides+1, 0, v), s, r)
+		VMAXPD(zero, r, r)
+		VMULPD(r, r, r)
+		VADDPD(yy, xx, s)
+		VMULPD(l.at(fence, 3*orbitSides+2, 0, v), s, s)
+		l.compare(s, r, inner)
+		TESTL(inner, inner)
+		JZ(operand.LabelRef(within))
+		VMULPD(b, d, xy)
+		VFMADD231PD(a, c, xy)
+		VMOVAPD(zero, top)
+		for k := range orbitSides {
+			t := l.vector()
+			VMULPD(l.at(fence, 3*k+2, 0, v), yy, t)
+			VFMADD231PD(l.at(fence, 3*k+1, 0, v), xy, t)
+			VFMADD231PD(l.at(fence, 3*k, 0, v), xx, t)
+			VMAXPD(top, t, top)
+		}
+		l.compare(top, r, bits)
+		ANDL(inner, bits)
+		if v > 0 {
+			SHLL(operand.U8(v*l.width), bits)
+		}
+		ANDL(want, bits)
+		ORL(bits, operand.Mem{Base: out})
+		Label(within)
+		ADDQ(operand.U32(3*row), x)
+		ADDQ(operand.U32(3*row), y)
+		ADDQ(operand.Imm(16), lines)
+		SUBQ(operand.Imm(4), out) // the loop moves on by 8
+	})
+}

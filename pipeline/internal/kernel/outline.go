@@ -1,0 +1,250 @@
+package kernel
+
+import (
+	"math"
+	"math/bits"
+	"unsafe"
+)
+
+// Directions is the number of directions of an Outline; outlineWidth fills whole
+// vectors.
+const (
+	Directions   = 180
+	outlineWidth = 192
+)
+
+// Outline holds one number for each direction, and in the rest copies of the
+// last.
+type Outline [outlineWidth]float64
+
+// Compass holds the cosines and sines of the directions, and copies of the last.
+type Compass struct{ Cos, Sin Outline }
+
+// Point is a point of the plane.
+type Point struct{ X, Y float64 }
+
+// Widen raises each number of an outline to the greatest |x·cos θ + y·sin θ| of
+// the points in its direction. Of numbers that are not finite it makes numbers
+// that are unspecified.
+func Widen(o *Outline, c *Compass, points []Point) {
+	if len(points) > 0 {
+		current.widen(o, c, &points[0], len(points))
+	}
+}
+
+// Above is a set of directions of an outline: bit i%64 of word i/64.
+type Above [3]uint64
+
+// Above sets set to the directions of which the numbers exceed x >= 0.
+func (o *Outline) Above(x float64, set *Above) {
+	current.above(o, x, set)
+	set[Directions/64] &= 1<<(Directions%64) - 1
+}
+
+// Exceeds reports whether in some direction
+//
+//	Middle + Cosine·cos 2θ + Sine·sin 2θ > max(0, max(x, Floor) − p)²
+//
+// with x the number of the outline and p the greater |X·cos θ + Y·sin θ| of the
+// form's two points; twice is the compass of the double angles.
+func (o *Outline) Exceeds(c, twice *Compass, f *Form) bool {
+	return current.exceeds(o, c, twice, f) != 0
+}
+
+// Form holds the coefficients of Exceeds.
+type Form struct {
+	Middle, Cosine, Sine, Floor float64
+	Points                      [2]Point
+}
+
+// Greatest returns the greatest of the numbers of an outline, none negative.
+func Greatest(o *Outline) float64 { return current.greatestOf(o) }
+
+// Project sets lane l of rows[i] to x·Cos + y·Sin of point i and the direction of
+// the lane, for the lanes whose bits want has; other lanes of rows are
+// unspecified. It panics if lengths differ.
+func Project(rows []Row, rays *Rays, points []Point, want uint32) {
+	checkLines(len(rows), len(points), len(points))
+	if len(rows) > 0 {
+		current.project(&rows[0], rays, &points[0], len(rows), want)
+	}
+}
+
+// Rays holds a direction for each lane.
+type Rays struct{ Cos, Sin Row }
+
+// Sides and OrbitSides are the numbers of pairs of sides of a Fence and of an
+// OrbitFence.
+const (
+	Sides      = 10
+	OrbitSides = 30
+)
+
+// Fence holds for each lane the region in which all of
+//
+//	|x·X[i] + y·Y[i]| <= Limit
+//
+// hold.
+type Fence struct {
+	Sides [Sides]struct{ X, Y Row }
+	Limit Row
+}
+
+// ScreenFence sets bit l of flags[i] where (x[i][l], y[i][l]) is not within the
+// fence of lane l and l is one of the bits of want, and clears it elsewhere. It
+// panics if lengths differ.
+func ScreenFence(f *Fence, x, y []Row, flags []uint32, want uint32) {
+	checkLines(len(x), len(y), len(flags))
+	clear(flags)
+	if len(x) > 0 {
+		current.screenFence(f, &x[0], &y[0], &flags[0], len(x), want)
+	}
+}
+
+// OrbitFence holds for each lane the region of free vibrations (x, y) with
+// displacements X and velocities Y for which all of
+//
+//	XX[i]·(x.X² + x.Y²) + XY[i]·(x.X·y.X + x.Y·y.Y) + YY[i]·(y.X² + y.Y²) <= max(0, 1 − First·line.First − Second·line.Second)²
+//
+// hold, or Inner·(x.X² + x.Y² + y.X² + y.Y²) in place of them.
+type OrbitFence struct {
+	Sides                [OrbitSides]struct{ XX, XY, YY Row }
+	First, Second, Inner Row
+}
+
+// ScreenOrbits sets bit l of flags[i] where (x[i], y[i]) is not within the region
+// of lane l and l is one of the bits of want, and clears it elsewhere. It panics if
+// lengths differ.
+func ScreenOrbits(f *OrbitFence, x, y []Mark, lines []Line, flags []uint32, want uint32) {
+	checkLines(len(x), len(y), len(flags))
+	checkLines(len(x), len(lines), len(flags))
+	clear(flags)
+	if len(x) > 0 {
+		current.screenOrbits(f, &x[0], &y[0], &lines[0], &flags[0], len(x), want)
+	}
+}
+
+// JoinPeaks sets the peak of each mark of sums to First² + Second² of the peaks
+// of a pair of marks, or to their sum where they are squares. It panics if
+// lengths differ. sums may be one of the others.
+func JoinPeaks(sums, first, second []Mark, squares bool) {
+	checkLines(len(sums), len(first), len(second))
+	for i := range sums {
+		x, y, sum := &first[i].Peak, &second[i].Peak, &sums[i].Peak
+		if squares {
+			for l := range sum {
+				sum[l] = x[l] + y[l]
+			}
+			continue
+		}
+		for l := range sum {
+			sum[l] = math.FMA(x[l], x[l], float64(y[l]*y[l]))
+		}
+	}
+}
+
+func widenGeneric(o *Outline, c *Compass, points *Point, n int) {
+	list := unsafe.Slice(points, n)
+	for i := range o {
+		top, cos, sin := o[i], c.Cos[i], c.Sin[i]
+		for _, p := range list {
+			if x := math.Abs(math.FMA(cos, p.X, float64(sin*p.Y))); x > top {
+				top = x
+			}
+		}
+		o[i] = top
+	}
+}
+
+func aboveGeneric(o *Outline, x float64, set *Above) {
+	*set = Above{}
+	for i, y := range o {
+		if y > x {
+			set[i/64] |= 1 << (i % 64)
+		}
+	}
+}
+
+func exceedsGeneric(o *Outline, c, twice *Compass, f *Form) uint64 {
+	found := uint64(0)
+	for i, x := range o {
+		if !(x > f.Floor) {
+			x = f.Floor
+		}
+		p := math.Abs(math.FMA(c.Cos[i], f.Points[0].X, float64(c.Sin[i]*f.Points[0].Y)))
+		if q := math.Abs(math.FMA(c.Cos[i], f.Points[1].X, float64(c.Sin[i]*f.Points[1].Y))); !(p > q) {
+			p = q
+		}
+		x -= p
+		if !(x > 0) {
+			x = 0
+		}
+		if math.FMA(f.Sine, twice.Sin[i], math.FMA(f.Cosine, twice.Cos[i], f.Middle)) > float64(x*x) {
+			found = 1
+		}
+	}
+	return found
+}
+
+func greatestOfGeneric(o *Outline) float64 {
+	top := 0.0
+	for _, x := range o {
+		top = max(top, x)
+	}
+	return top
+}
+
+func projectGeneric(rows *Row, rays *Rays, points *Point, n int, want uint32) {
+	list, out := unsafe.Slice(points, n), unsafe.Slice(rows, n)
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		cos, sin := rays.Cos[l], rays.Sin[l]
+		for i, p := range list {
+			out[i][l] = math.FMA(cos, p.X, float64(sin*p.Y))
+		}
+	}
+}
+
+func screenFenceGeneric(f *Fence, x, y *Row, flags *uint32, n int, want uint32) {
+	xs, ys, out := unsafe.Slice(x, n), unsafe.Slice(y, n), unsafe.Slice(flags, n)
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		for i := range out {
+			u, v, top := xs[i][l], ys[i][l], 0.0
+			for k := range f.Sides {
+				side := &f.Sides[k]
+				top = max(top, math.Abs(math.FMA(side.X[l], u, float64(side.Y[l]*v))))
+			}
+			if top > f.Limit[l] {
+				out[i] |= 1 << l
+			}
+		}
+	}
+}
+
+func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32) {
+	xs, ys := unsafe.Slice(x, n), unsafe.Slice(y, n)
+	list, out := unsafe.Slice(lines, n), unsafe.Slice(flags, n)
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		for i, line := range list {
+			a, b, c, d := xs[i].X[l], xs[i].Y[l], ys[i].X[l], ys[i].Y[l]
+			xx, xy, yy := math.FMA(a, a, float64(b*b)), math.FMA(a, c, float64(b*d)), math.FMA(c, c, float64(d*d))
+			r := math.FMA(-f.Second[l], line.Second, math.FMA(-f.First[l], line.First, 1))
+			if !(r > 0) {
+				r = 0
+			}
+			if !(float64(f.Inner[l]*(xx+yy)) > float64(r*r)) {
+				continue
+			}
+			top := 0.0
+			for k := range f.Sides {
+				side := &f.Sides[k]
+				top = max(top, math.FMA(side.XX[l], xx, math.FMA(side.XY[l], xy, float64(side.YY[l]*yy))))
+			}
+			if top > float64(r*r) {
+				out[i] |= 1 << l
+			}
+		}
+	}
+}

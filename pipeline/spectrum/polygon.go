@@ -1,0 +1,181 @@
+package spectrum
+
+import (
+	"math"
+	"math/bits"
+
+	"swaybook/pipeline/internal/kernel"
+)
+
+// half is the number of directions of which a lower median is the greatest of
+// the rest: as many exceed the lower of the middle two values, and the upper.
+const half = Directions / 2
+
+// polygon is what is known of the motion of one oscillator in the plane: lower
+// bounds L(θ) of D(θ), and which points can still matter to the median of D and
+// to its maximum.
+//
+// Let floor be a number that more than half of the bounds exceed, 91 of 180.
+// Then the lower of the middle two values of D exceeds it too, and |u| up to it
+// changes neither that value nor any above it. So a point matters only if in
+// some direction it is farther out than max(L(θ), floor). The fence surrounds a
+// region without such points.
+type polygon struct {
+	reach kernel.Outline // L
+	floor float64
+	fence [kernel.Sides]kernel.Point // normals of sides over their distances
+	least float64                    // of those
+	set   kernel.Above               // here, as form, because what kernels use must not be allocated
+	form  kernel.Form
+}
+
+// begin sets what is known from the D of both components. The motion has a point
+// at a distance of at least the greater one, which has more than 0.69 of that in
+// all directions up to 46° from its own.
+func (p *polygon) begin(first, second float64) {
+	p.reach = kernel.Outline{}
+	p.reach[0], p.reach[half] = first, second
+	p.floor = float64(0.69 * max(first, second))
+	p.enclose()
+}
+
+// widen takes in points of the motion.
+func (p *polygon) widen(points []kernel.Point) {
+	kernel.Widen(&p.reach, &compass, points)
+	p.raise(6)
+}
+
+// raise lifts the floor by so many bisections.
+func (p *polygon) raise(bisections int) {
+	most := kernel.Greatest(&p.reach)
+	for range bisections {
+		middle := float64(0.5 * (p.floor + most))
+		if p.above(middle) > half {
+			p.floor = middle
+		} else {
+			most = middle
+		}
+	}
+}
+
+// enclose sets the fence, and least.
+func (p *polygon) enclose() {
+	var tangent [kernel.Sides + 1]float64
+	share := p.tangents(tangent[:])
+	p.least = math.Inf(1)
+	const side = Directions / kernel.Sides
+	for k := range p.fence {
+		distance := float64(share * tangent[k])
+		p.fence[k] = kernel.Point{X: compass.Cos[k*side] / distance, Y: compass.Sin[k*side] / distance}
+		p.least = min(p.least, distance)
+	}
+}
+
+// tangents sets list to max(L(θ), floor) in evenly spaced directions, the first
+// again at the end, and returns the share that they are to be drawn in by so that
+// their corners keep within it in the directions between. Between two of them, n
+// degrees apart, the corner's distance in direction θ is that of both, weighed
+// with sines.
+func (p *polygon) tangents(list []float64) (share float64) {
+	last := len(list) - 1
+	n := Directions / last
+	for k := range last {
+		list[k] = max(p.reach[k*n], p.floor)
+	}
+	list[last] = list[0]
+	share = 1
+	whole := compass.Sin[n]
+	for k := range last {
+		from, to := list[k]/whole, list[k+1]/whole
+		for i := 1; i < n; i++ {
+			corner := float64(from*compass.Sin[n-i]) + float64(to*compass.Sin[i])
+			share = min(share, max(p.reach[k*n+i], p.floor)/corner)
+		}
+	}
+	return share
+}
+
+// beyond returns the greatest ratio of the distance of a point to that of a side
+// of the fence.
+//
+// The distance from the middle over that of the nearest side, which is no less,
+// will do where it is less than enough.
+func (p *polygon) beyond(x, y, enough float64) float64 {
+	if top := reach(x, y) / p.least; top < enough {
+		return top
+	}
+	top := 0.0
+	for i := range p.fence {
+		top = max(top, math.Abs(math.FMA(p.fence[i].X, x, float64(p.fence[i].Y*y))))
+	}
+	return top
+}
+
+// above returns how many of L exceed x.
+func (p *polygon) above(x float64) int {
+	set := &p.set
+	p.reach.Above(x, set)
+	return bits.OnesCount64(set[0]) + bits.OnesCount64(set[1]) + bits.OnesCount64(set[2])
+}
+
+// surrounds reports whether the sum of a free vibration in the plane, from (x, y)
+// with velocities (vx, vy) over ω, and of a motion on the straight line between two
+// points cannot matter: in direction θ it is at most
+//
+//	√((x·cos θ + y·sin θ)² + (vx·cos θ + vy·sin θ)²)
+//
+// from that line, the square of which is a constant with a cosine and a sine of
+// 2θ.
+func (p *polygon) surrounds(x, vx, y, vy float64, from, to kernel.Point) bool {
+	first, second := float64(x*x)+float64(vx*vx), float64(y*y)+float64(vy*vy)
+	p.form = kernel.Form{
+		Middle: float64(0.5 * (first + second)), Cosine: float64(0.5 * (first - second)),
+		Sine: float64(x*y) + float64(vx*vy), Floor: p.floor, Points: [2]kernel.Point{from, to},
+	}
+	return !p.reach.Exceeds(&compass, &twice, &p.form)
+}
+
+// compass holds the cosines and sines of the directions, twice those of double
+// the angles.
+var compass, twice = func() (single, double kernel.Compass) {
+	for k := range single.Cos {
+		sin, cos := sinCosDegrees(min(k, Directions-1))
+		single.Sin[k], single.Cos[k] = sin, cos
+		double.Sin[k], double.Cos[k] = float64(2*float64(sin*cos)), float64((cos-sin)*(cos+sin))
+	}
+	return single, double
+}()
+
+// sinCosDegrees returns the sine and cosine of k degrees, 0 <= k < 180, rounded
+// from twice the precision, so that their bits depend on no library.
+func sinCosDegrees(k int) (sin, cos float64) {
+	rest := k % 90
+	s, c := sinCosWithin(min(rest, 90-rest))
+	if rest > 45 {
+		s, c = c, s
+	}
+	if k >= 90 {
+		s, c = c, -s
+	}
+	return s, c
+}
+
+// sinCosWithin does it up to 45°, by Taylor series.
+func sinCosWithin(k int) (sin, cos float64) {
+	x := double{math.Pi, 1.2246467991473532e-16}.times(float64(k)).over(180)
+	term, s, c := double{1, 0}, double{}, double{}
+	for n := range 26 {
+		switch n % 4 {
+		case 0:
+			c = c.add(term)
+		case 1:
+			s = s.add(term)
+		case 2:
+			c = c.sub(term)
+		case 3:
+			s = s.sub(term)
+		}
+		term = term.mul(x).over(float64(n + 1))
+	}
+	return s.hi, c.hi
+}

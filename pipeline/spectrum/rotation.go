@@ -1,0 +1,273 @@
+package spectrum
+
+import (
+	"math"
+	"math/bits"
+	"slices"
+
+	"swaybook/pipeline/internal/kernel"
+)
+
+// rotation is the work space for a pair of components: both motions, scaled
+// alike, and what is known of each lane of the group in hand.
+//
+// Vectors of the plane obey the bounds of single components, because their length
+// is the greatest of their components over all directions, and lengths of bounds
+// bound it. So blocks of steps are passed over where a bound on |u| stays below
+// the floor of a lane. The others are marched again, and what in them is not
+// within the fence of a lane is gathered in pieces. From these follow, at the end,
+// the directions whose D must be known, and their D.
+type rotation struct {
+	pair                  [2]*motion
+	blockNorms, stepNorms []kernel.Line // blockLines and stepLines of both as lengths
+	strideNorms           [len(strides)][]kernel.Line
+	peak                  float64            // the greatest length of the ground acceleration
+	fence                 *kernel.Fence      // slow: those of the lanes, in units of the march
+	orbits                *kernel.OrbitFence // fast: what free vibrations do not leave it
+	lane                  [lanes]rotatedLane
+	points                []kernel.Point
+	order                 []int     // blocks
+	first, second         []float64 // D of the components
+	directions            directions
+}
+
+// span is the bound on |u| over some time,
+//
+//	max|u| <= growth·(m + reach·max|a|),
+//
+// with m the greater |u| at both ends: func bounds, time in steps.
+type span struct{ growth, reach float64 }
+
+// newSpan returns that over n steps of the given phase.
+func newSpan(phase, damping, n float64) span {
+	reach, growth, _ := bounds(float64(n*phase), damping)
+	return span{growth, float64(float64(n*n) * reach)}
+}
+
+func (s *span) bound(u, a float64) float64 { return s.growth * (u + float64(s.reach*a)) }
+
+// rotatedLane is one oscillator of the group in hand.
+//
+// It is looked at in pieces over which the bound is close: parts of a step where
+// its period is short, else one step or several (every).
+type rotatedLane struct {
+	polygon
+	one    *slow // the oscillator, the shortest piece its step
+	cuts   int   // those in a step
+	every  int   // steps in a piece, 1 if cut
+	rows   span  // over the time between two samples that are looked at
+	piece  span  // over a piece, time in steps of one
+	pieces []piece
+	wide   int  // pieces that the polygon has taken in
+	fenced bool // whether the rotation has the fence of the polygon
+}
+
+// piece is one that can matter: where it starts, how many steps it takes in, the
+// displacements of both motions at its start, at the next sample and at its end,
+// and the greatest length of the ground acceleration, in steps of one.
+type piece struct {
+	sample, part, every            int
+	x, y, xNext, yNext, xEnd, yEnd float64
+	ground                         float64
+}
+
+// absorbPieces is how many pieces a lane gathers before its polygon takes them
+// in, so that what that costs is shared.
+const absorbPieces = 32
+
+// pairEnd is the state of both motions at the last sample, velocities over ω.
+type pairEnd struct{ x, y, vx, vy float64 }
+
+func newRotation() *rotation {
+	return &rotation{
+		pair:  [2]*motion{newMotion(), newMotion()},
+		fence: new(kernel.Fence), orbits: new(kernel.OrbitFence),
+		directions: newDirections(),
+	}
+}
+
+// load is that of a motion for both, scaled alike.
+func (r *rotation) load(first, second []float64) (known float64, done bool) {
+	top := max(greatest(first), greatest(second)) // NaN where one is
+	if math.IsNaN(top) {
+		return math.NaN(), true
+	}
+	if len(first) < 2 || top == 0 {
+		return 0, true
+	}
+	for i, samples := range [][]float64{first, second} {
+		r.pair[i].scale(samples, top)
+		r.pair[i].measure()
+	}
+	return 0, false
+}
+
+// prepare makes lengths of what bounds are made of.
+func (r *rotation) prepare(strided [len(strides)]bool) {
+	first, second := r.pair[0], r.pair[1]
+	r.blockNorms = norms(r.blockNorms, first.blockLines, second.blockLines)
+	r.stepNorms = norms(r.stepNorms, first.stepLines, second.stepLines)
+	for i, used := range strided {
+		if used {
+			first.loadStride(i)
+			second.loadStride(i)
+			r.strideNorms[i] = norms(r.strideNorms[i], first.strides[i].lines, second.strides[i].lines)
+		}
+	}
+	r.peak = 0
+	for _, line := range r.blockNorms {
+		r.peak = max(r.peak, line.First)
+	}
+}
+
+func norms(dst, first, second []kernel.Line) []kernel.Line {
+	dst = resize(dst, len(first))
+	for i, x := range first {
+		y := second[i]
+		dst[i] = kernel.Line{First: reach(x.First, y.First), Second: reach(x.Second, y.Second)}
+	}
+	return dst
+}
+
+// marks are those of the first motion; a rotation leaves in their peaks what both
+// make together.
+func (r *rotation) marks() []kernel.Mark { return r.pair[0].marks[:r.pair[0].blocks()] }
+
+// begin makes a lane ready.
+func (r *rotation) begin(l, index int) *rotatedLane {
+	lane := &r.lane[l]
+	lane.polygon.begin(r.first[index], r.second[index])
+	lane.pieces, lane.wide, lane.every, lane.fenced = lane.pieces[:0], 0, 1, false
+	return lane
+}
+
+// topBlocks flags the blocks of the greatest peak of each lane.
+func (r *rotation) topBlocks() []uint32 {
+	m, marks := r.pair[0], r.marks()
+	kernel.GreatestPeaks(m.top, marks)
+	*m.screen = kernel.Screen{}
+	for l := range m.top {
+		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
+	}
+	kernel.ScreenPeaks(m.screen, marks, r.blockNorms, m.flags)
+	return m.flags
+}
+
+// others lists the blocks that can matter, apart from those done, those of most
+// lanes first, which raise floors so that others need not be looked at.
+func (r *rotation) others(lines []kernel.Line, live uint32) []int {
+	m := r.pair[0]
+	kernel.ScreenSquares(m.screen, r.marks(), lines, m.flags)
+	r.order = r.order[:0]
+	for b := range m.flags {
+		if m.flags[b] &= live &^ m.done[b]; m.flags[b] != 0 {
+			r.order = append(r.order, b)
+		}
+	}
+	slices.SortStableFunc(r.order, func(a, b int) int {
+		return bits.OnesCount32(m.flags[b]) - bits.OnesCount32(m.flags[a])
+	})
+	return r.order
+}
+
+// passing flags the lanes that a block can still matter to.
+func (r *rotation) passing(b int, lines []kernel.Line) uint32 {
+	m := r.pair[0]
+	kernel.ScreenSquares(m.screen, r.marks()[b:b+1], lines[b:b+1], m.flags[b:b+1])
+	return m.flags[b]
+}
+
+// absorb takes the pieces that lanes have gathered into their polygons, if there
+// are enough of them.
+func (r *rotation) absorb(flags uint32, enough int) {
+	for ; flags != 0; flags &= flags - 1 {
+		lane := &r.lane[bits.TrailingZeros32(flags)]
+		if len(lane.pieces)-lane.wide < enough {
+			continue
+		}
+		r.points = lane.points(r.points[:0])
+		lane.widen(r.points)
+		lane.enclose()
+		lane.fenced = false
+	}
+}
+
+// points appends the ends of the pieces that the polygon has not taken in yet.
+func (lane *rotatedLane) points(list []kernel.Point) []kernel.Point {
+	for i := range lane.pieces[lane.wide:] {
+		s := &lane.pieces[lane.wide+i]
+		if i == 0 || !s.follows(&lane.pieces[lane.wide+i-1]) {
+			list = append(list, kernel.Point{X: s.x, Y: s.y})
+		}
+		list = append(list, kernel.Point{X: s.xEnd, Y: s.yEnd})
+	}
+	lane.wide = len(lane.pieces)
+	return list
+}
+
+// follows reports whether a piece begins where another ends.
+func (s *piece) follows(before *piece) bool { return s.x == before.xEnd && s.y == before.yEnd }
+
+// within returns the share of the fence within which a span of a lane with ground
+// acceleration up to a may begin and end and still not matter, −1 for none: beyond
+// it by the bound of the span, it must not leave the fence in any direction.
+func (lane *rotatedLane) within(s *span, a float64) float64 {
+	if share := 1/s.growth - float64(s.reach*a)/lane.polygon.least; share > 0 {
+		return share
+	}
+	return -1
+}
+
+// gatherParts collects the parts of a step that are not within the fence, if its
+// free vibration about its straight-line solution (type fast) can matter. a is the
+// greatest length of the ground acceleration in the step.
+func (lane *rotatedLane) gatherParts(sample int, first, second parts, a float64) {
+	o, n := lane.one, float64(lane.cuts)
+	x, xRise := first.line(o)
+	y, yRise := second.line(o)
+	from, to := kernel.Point{X: x, Y: y}, kernel.Point{X: x + float64(n*xRise), Y: y + float64(n*yRise)}
+	if lane.surrounds(first.u-x, (first.v-xRise)/o.phase, second.u-y, (second.v-yRise)/o.phase, from, to) {
+		return
+	}
+	a = float64(a * first.square)
+	limit := lane.within(&lane.piece, a)
+	outside := lane.beyond(first.u, second.u, limit) > limit
+	for part := range lane.cuts {
+		x, y := first.u, second.u
+		first.next(lane.one)
+		second.next(lane.one)
+		next := lane.beyond(first.u, second.u, limit) > limit
+		if outside || next {
+			lane.pieces = append(lane.pieces, piece{
+				sample: sample, part: part, every: 1, x: x, y: y,
+				xNext: first.u, yNext: second.u, xEnd: first.u, yEnd: second.u, ground: a})
+		}
+		outside = next
+	}
+}
+
+// parts follows a step in parts, in units of one.
+type parts struct{ u, v, a, rise, square float64 }
+
+// newParts cuts a step from displacement u and velocity v under ground
+// acceleration from a to next.
+func newParts(u, v, a, next float64, cuts int) parts {
+	n := float64(cuts)
+	square := 1 / float64(n*n)
+	return parts{u: u, v: v / n, a: float64(a * square), rise: float64((next - a) / n * square), square: square}
+}
+
+// line returns the straight-line solution at the start of a part and its change
+// over the part.
+func (p *parts) line(o *slow) (at, rise float64) {
+	square := 1 / float64(o.phase*o.phase)
+	return -float64(square * (p.a - float64(float64(2*o.damping)/o.phase*p.rise))), -float64(square * p.rise)
+}
+
+func (p *parts) next(o *slow) {
+	r := &o.exact
+	next := p.a + p.rise
+	u := p.u + ((float64(r.uu*p.u) + float64(r.uv*p.v)) + (float64(r.pu*p.a) + float64(r.qu*next)))
+	p.v = o.arrival(p.u, p.v, p.a, next)
+	p.u, p.a = u, next
+}

@@ -1,0 +1,121 @@
+package spectrum
+
+import (
+	"math"
+	"math/bits"
+
+	"swaybook/pipeline/internal/kernel"
+)
+
+// rotate puts RotD50 and RotD100 of the members into dst50 and dst100, in units
+// of the motion.
+func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
+	g.march(r.pair[0])
+	g.march(r.pair[1])
+	for l := range g.members {
+		o := &g.members[l]
+		lane := r.begin(l, o.index)
+		lane.one, lane.cuts = &o.part, o.parts
+		lane.piece = newSpan(o.part.phase, o.part.damping, 1)
+	}
+	marks := r.marks()
+	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], true)
+	m := r.pair[0]
+	live := ^uint32(0) >> (lanes - len(g.members))
+	for b, flags := range r.topBlocks() {
+		m.done[b] = flags & live
+		g.gather(r, b, m.done[b])
+		r.absorb(m.done[b], 1)
+	}
+	g.limitPair(r)
+	for _, b := range r.others(r.blockNorms, live) {
+		g.limitPair(r)
+		flags := r.passing(b, r.blockNorms) & live &^ m.done[b]
+		g.gather(r, b, flags)
+		r.absorb(flags, absorbPieces)
+	}
+	for l := range g.members {
+		o := &g.members[l]
+		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
+		end := pairEnd{x.x, y.x, x.y / o.phase, y.y / o.phase}
+		dst50[o.index], dst100[o.index] = r.finish(l, &o.ringing, end)
+	}
+}
+
+// last returns displacement and velocity at the last sample. The state is
+// relative to the line of the last step, carried on.
+func (g *fastGroup) last(m *motion, l int) state {
+	o, n := &g.members[l], m.steps()
+	end, slope := &m.marks[m.blocks()], m.a[n]-m.a[n-1]
+	s := state{end.X[l], end.Y[l]}
+	return state{o.displacement(s, m.a[n], slope), o.velocity(s, slope)}
+}
+
+// limitPair is limit with the floor in place of best.
+func (g *fastGroup) limitPair(r *rotation) {
+	screen := r.pair[0].screen
+	for l := range g.members {
+		o := &g.members[l]
+		screen.Limit[l] = float64(r.lane[l].floor * o.cube)
+		screen.First[l], screen.Second[l] = o.phase, o.turn.jump
+	}
+}
+
+// gather marches a block of both motions again and collects the parts of steps
+// that can matter, for the lanes flagged.
+func (g *fastGroup) gather(r *rotation, b int, flags uint32) {
+	if flags == 0 {
+		return
+	}
+	m := r.pair[0]
+	from, to := m.block(b)
+	n := to - from
+	x, y, stepFlags := m.states[:n], r.pair[1].states[:n], m.stepFlags[:n]
+	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], x, flags)
+	kernel.TraceFast(g.turn, &r.pair[1].marks[b], r.pair[1].bend[from:to], y, flags)
+	g.setFence(r, flags)
+	kernel.ScreenOrbits(r.orbits, x, y, r.stepNorms[from:to], stepFlags, flags)
+	for k := range stepFlags {
+		for left := stepFlags[k] & flags; left != 0; left &= left - 1 {
+			g.gatherStep(r, bits.TrailingZeros32(left), from+k, k)
+		}
+	}
+}
+
+// setFence sets the region of free vibrations that, with the straight-line
+// solution of a step, stay within the fence of a lane.
+func (g *fastGroup) setFence(r *rotation, flags uint32) {
+	for ; flags != 0; flags &= flags - 1 {
+		l := bits.TrailingZeros32(flags)
+		lane, o := &r.lane[l], &g.members[l]
+		if lane.fenced {
+			continue
+		}
+		lane.fenced = true
+		var tangent [kernel.OrbitSides + 1]float64
+		share := lane.tangents(tangent[:])
+		least := math.Inf(1)
+		for k := range r.orbits.Sides {
+			const side = Directions / kernel.OrbitSides
+			distance := float64(float64(share*tangent[k]) * o.cube)
+			x, y := compass.Cos[k*side]/distance, compass.Sin[k*side]/distance
+			sides := &r.orbits.Sides[k]
+			sides.XX[l], sides.XY[l], sides.YY[l] = float64(x*x), float64(2*float64(x*y)), float64(y*y)
+			least = min(least, distance)
+		}
+		r.orbits.First[l], r.orbits.Second[l] = o.phase/least, o.turn.jump/least
+		r.orbits.Inner[l] = 1 / float64(least*least)
+	}
+}
+
+// gatherStep collects the parts of a step from row k.
+func (g *fastGroup) gatherStep(r *rotation, l, sample, k int) {
+	o, lane := &g.members[l], &r.lane[l]
+	var both [2]parts
+	for i, m := range r.pair {
+		s := state{m.states[k].X[l], m.states[k].Y[l]}
+		a, next := m.a[sample], m.a[sample+1]
+		both[i] = newParts(o.displacement(s, a, next-a), o.velocity(s, next-a), a, next, lane.cuts)
+	}
+	lane.gatherParts(sample, both[0], both[1], r.stepNorms[sample].First)
+}

@@ -1,0 +1,204 @@
+package spectrum
+
+import (
+	"math"
+	"math/bits"
+
+	"swaybook/pipeline/internal/kernel"
+)
+
+// rotate puts RotD50 and RotD100 of the members into dst50 and dst100, in units
+// of the motion.
+func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
+	live := uint32(0)
+	for l := range g.members {
+		if !g.members[l].free {
+			live |= 1 << l
+			g.begin(r, l)
+		}
+	}
+	if live == 0 {
+		return
+	}
+	g.march(r.pair[0])
+	g.march(r.pair[1])
+	marks := r.marks()
+	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], false)
+	m := r.pair[0]
+	for b, flags := range r.topBlocks() {
+		m.done[b] = flags & live
+		g.gather(r, b, m.done[b])
+		r.absorb(m.done[b], 1)
+	}
+	lines := r.blockNorms
+	if g.stride != nil {
+		lines = r.strideNorms[g.level]
+	}
+	g.limitPair(r)
+	for _, b := range r.others(lines, live) {
+		g.limitPair(r)
+		flags := r.passing(b, lines) & live &^ m.done[b]
+		g.gather(r, b, flags)
+		r.absorb(flags, absorbPieces)
+	}
+	for ; live != 0; live &= live - 1 {
+		l := bits.TrailingZeros32(live)
+		o := &g.members[l]
+		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
+		end := pairEnd{x.x, y.x, x.y / o.phase, y.y / o.phase}
+		dst50[o.index], dst100[o.index] = r.finish(l, &o.ringing, end)
+	}
+}
+
+// closeness is what the ground and the spring may add between the ends of a
+// piece of several steps, as a share of D.
+const closeness = 0.002
+
+// maxEvery is the greatest number of steps in a piece, a divisor of blockSteps.
+const maxEvery = 16
+
+// begin chooses the pieces of a lane.
+func (g *slowGroup) begin(r *rotation, l int) {
+	o := &g.members[l]
+	lane := r.begin(l, o.index)
+	lane.one, lane.cuts = o, 1
+	if o.parts > 1 {
+		lane.one, lane.cuts = o.part, o.parts
+	} else {
+		lane.every = everyOf(o.phase, r.peak, max(r.first[o.index], r.second[o.index]))
+	}
+	lane.rows = newSpan(o.phase, o.damping, float64(lane.every))
+	lane.piece = newSpan(lane.one.phase, o.damping, float64(lane.every))
+}
+
+// everyOf returns a number of steps, a power of two, over which the bound of func
+// bounds exceeds what it bounds by a share of at most closeness or so, where |u|
+// is near to D.
+func everyOf(phase, ground, d float64) int {
+	share := (float64(phase*phase) + ground/d) / (8 * closeness) // of one step
+	every := 1
+	for every < maxEvery && float64(float64(4*every*every)*share) <= 1 {
+		every *= 2
+	}
+	return every
+}
+
+func (g *slowGroup) last(m *motion, l int) state {
+	end := &m.marks[m.blocks()]
+	return g.members[l].ending(m, state{end.X[l], end.Y[l]})
+}
+
+// limitPair is limit with the floor in place of best.
+func (g *slowGroup) limitPair(r *rotation) {
+	m := r.pair[0]
+	for l := range g.members {
+		o := &g.members[l]
+		floor := r.lane[l].floor
+		if g.stride != nil {
+			over := float64(o.phase * float64(strides[g.level]))
+			m.screen.Limit[l] = float64(floor * strideBound(over, o.damping))
+			m.screen.First[l] = 1
+			continue
+		}
+		scale := math.Abs(o.eq.scale)
+		m.screen.Limit[l] = floor / float64(o.growth*scale)
+		m.screen.First[l] = o.reach / scale
+	}
+}
+
+// gather marches a block of both motions again and collects the pieces that can
+// matter, for the lanes flagged.
+func (g *slowGroup) gather(r *rotation, b int, flags uint32) {
+	if flags == 0 {
+		return
+	}
+	from, to := r.pair[0].block(b)
+	if g.stride == nil {
+		from = max(from, 1)
+	}
+	rows := to - from + 1
+	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
+	g.trace(r.pair[0], b, from, x, flags)
+	g.trace(r.pair[1], b, from, y, flags)
+	g.setFence(r, flags, r.blockNorms[b].First)
+	kernel.ScreenFence(r.fence, x, y, rowFlags, flags)
+	if from == 1 {
+		g.gatherFirst(r, flags)
+	}
+	for every := 1; every <= maxEvery; every *= 2 {
+		if chosen := flags & r.lanesOf(every, rows == blockSteps+1); chosen != 0 {
+			g.gatherPieces(r, from, rows, every, r.blockNorms[b].First, chosen)
+		}
+	}
+}
+
+// lanesOf flags the lanes whose pieces have so many steps, in a block that is
+// whole or not; in one that is not, pieces are steps.
+func (r *rotation) lanesOf(every int, whole bool) (flags uint32) {
+	for l := range r.lane {
+		if whole && r.lane[l].every == every || !whole && every == 1 {
+			flags |= 1 << l
+		}
+	}
+	return flags
+}
+
+// setFence sets the limits of lanes for a block with ground accelerations up to a.
+func (g *slowGroup) setFence(r *rotation, flags uint32, a float64) {
+	for ; flags != 0; flags &= flags - 1 {
+		l := bits.TrailingZeros32(flags)
+		lane := &r.lane[l]
+		r.fence.Limit[l] = lane.within(&lane.rows, a)
+		if lane.fenced {
+			continue
+		}
+		lane.fenced = true
+		scale := g.members[l].eq.scale
+		for k := range lane.fence {
+			r.fence.Sides[k].X[l], r.fence.Sides[k].Y[l] = float64(scale*lane.fence[k].X), float64(scale*lane.fence[k].Y)
+		}
+	}
+}
+
+// gatherPieces collects the pieces of so many steps that are not within inner,
+// with a the greatest length of the ground acceleration in the block.
+func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, a float64, flags uint32) {
+	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
+	for k := 0; k+every < rows; k += every {
+		for left := (rowFlags[k] | rowFlags[k+every]) & flags; left != 0; left &= left - 1 {
+			l := bits.TrailingZeros32(left)
+			scale, lane := g.members[l].eq.scale, &r.lane[l]
+			if lane.cuts > 1 {
+				g.gatherStep(r, l, from+k, k)
+				continue
+			}
+			lane.pieces = append(lane.pieces, piece{
+				sample: from + k, every: every, ground: a,
+				x: float64(scale * x[k][l]), y: float64(scale * y[k][l]),
+				xNext: float64(scale * x[k+1][l]), yNext: float64(scale * y[k+1][l]),
+				xEnd: float64(scale * x[k+every][l]), yEnd: float64(scale * y[k+every][l])})
+		}
+	}
+}
+
+// gatherStep collects the parts of a step from row k.
+func (g *slowGroup) gatherStep(r *rotation, l, sample, k int) {
+	o, lane := &g.members[l], &r.lane[l]
+	var both [2]parts
+	for i, m := range r.pair {
+		u, next := float64(o.eq.scale*m.rows[k][l]), float64(o.eq.scale*m.rows[k+1][l])
+		v := o.velocity(u, next-u, m.a[sample], m.a[sample+1])
+		both[i] = newParts(u, v, m.a[sample], m.a[sample+1], lane.cuts)
+	}
+	lane.gatherParts(sample, both[0], both[1], r.stepNorms[sample].First)
+}
+
+// gatherFirst collects the step before the first of a march of steps.
+func (g *slowGroup) gatherFirst(r *rotation, flags uint32) {
+	for ; flags != 0; flags &= flags - 1 {
+		l := bits.TrailingZeros32(flags)
+		lane := &r.lane[l]
+		x, y := r.pair[0].a, r.pair[1].a
+		lane.gatherParts(0, newParts(0, 0, x[0], x[1], lane.cuts), newParts(0, 0, y[0], y[1], lane.cuts), r.stepNorms[0].First)
+	}
+}
