@@ -89,26 +89,26 @@ func (p *polygon) tangents(list []float64) (share float64) {
 		from, to := list[k]/whole, list[k+1]/whole
 		for i := 1; i < n; i++ {
 			corner := float64(from*compass.Sin[n-i]) + float64(to*compass.Sin[i])
-			share = min(share, max(p.reach[k*n+i], p.floor)/corner)
+			if x := max(p.reach[k*n+i], p.floor); x < float64(share*corner) {
+				share = x / corner
+			}
 		}
 	}
 	return share
 }
 
-// beyond returns the greatest ratio of the distance of a point to that of a side
-// of the fence.
-//
-// The distance from the middle over that of the nearest side, which is no less,
-// will do where it is less than enough.
-func (p *polygon) beyond(x, y, enough float64) float64 {
-	if top := reach(x, y) / p.least; top < enough {
-		return top
+// isBeyond reports whether a point is not within a share of the fence. The nearest
+// sides are least away, which settles most points.
+func (p *polygon) isBeyond(x, y, share float64) bool {
+	if inner := float64(share * p.least); share > 0 && float64(x*x)+float64(y*y) < float64(inner*inner) {
+		return false
 	}
-	top := 0.0
 	for i := range p.fence {
-		top = max(top, math.Abs(math.FMA(p.fence[i].X, x, float64(p.fence[i].Y*y))))
+		if math.Abs(math.FMA(p.fence[i].X, x, float64(p.fence[i].Y*y))) > share {
+			return true
+		}
 	}
-	return top
+	return false
 }
 
 // above returns how many of L exceed x.

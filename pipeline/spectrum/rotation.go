@@ -141,7 +141,7 @@ func (r *rotation) begin(l, index int) *rotatedLane {
 	return lane
 }
 
-// topBlocks flags the blocks of the greatest peak of each lane.
+// topBlocks flags the blocks that have the greatest peak of each lane, done too.
 func (r *rotation) topBlocks() []uint32 {
 	m, marks := r.pair[0], r.marks()
 	kernel.GreatestPeaks(m.top, marks)
@@ -149,24 +149,23 @@ func (r *rotation) topBlocks() []uint32 {
 	for l := range m.top {
 		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
 	}
-	kernel.ScreenPeaks(m.screen, marks, r.blockNorms, m.flags)
-	return m.flags
+	kernel.ScreenPeaks(m.screen, marks, r.blockNorms, m.done)
+	return m.done
 }
 
-// others lists the blocks that can matter, apart from those done, those of most
-// lanes first, which raise floors so that others need not be looked at.
-func (r *rotation) others(lines []kernel.Line, live uint32) []int {
+// inOrder lists the blocks that can matter, in the order in which floors rise
+// soon: first those of the greatest peaks of most lanes, then those of most lanes.
+func (r *rotation) inOrder(lines []kernel.Line, live uint32) []int {
 	m := r.pair[0]
 	kernel.ScreenSquares(m.screen, r.marks(), lines, m.flags)
 	r.order = r.order[:0]
 	for b := range m.flags {
-		if m.flags[b] &= live &^ m.done[b]; m.flags[b] != 0 {
+		if m.flags[b]&live&^m.done[b] != 0 {
 			r.order = append(r.order, b)
 		}
 	}
-	slices.SortStableFunc(r.order, func(a, b int) int {
-		return bits.OnesCount32(m.flags[b]) - bits.OnesCount32(m.flags[a])
-	})
+	rank := func(b int) int { return lanes*bits.OnesCount32(m.done[b]&live) + bits.OnesCount32(m.flags[b]&live) }
+	slices.SortStableFunc(r.order, func(a, b int) int { return rank(b) - rank(a) })
 	return r.order
 }
 
@@ -179,10 +178,10 @@ func (r *rotation) passing(b int, lines []kernel.Line) uint32 {
 
 // absorb takes the pieces that lanes have gathered into their polygons, if there
 // are enough of them.
-func (r *rotation) absorb(flags uint32, enough int) {
+func (r *rotation) absorb(flags uint32) {
 	for ; flags != 0; flags &= flags - 1 {
 		lane := &r.lane[bits.TrailingZeros32(flags)]
-		if len(lane.pieces)-lane.wide < enough {
+		if n := len(lane.pieces) - lane.wide; n == 0 || lane.wide > 0 && n < absorbPieces {
 			continue
 		}
 		r.points = lane.points(r.points[:0])
@@ -218,6 +217,10 @@ func (lane *rotatedLane) within(s *span, a float64) float64 {
 	return -1
 }
 
+// fewCuts is how many parts are looked at without asking first whether the free
+// vibration can matter, if it dies away.
+const fewCuts = 4
+
 // gatherParts collects the parts of a step that are not within the fence, if its
 // free vibration about its straight-line solution (type fast) can matter. a is the
 // greatest length of the ground acceleration in the step.
@@ -226,17 +229,17 @@ func (lane *rotatedLane) gatherParts(sample int, first, second parts, a float64)
 	x, xRise := first.line(o)
 	y, yRise := second.line(o)
 	from, to := kernel.Point{X: x, Y: y}, kernel.Point{X: x + float64(n*xRise), Y: y + float64(n*yRise)}
-	if lane.surrounds(first.u-x, (first.v-xRise)/o.phase, second.u-y, (second.v-yRise)/o.phase, from, to) {
+	if (lane.cuts > fewCuts || o.damping < freeDamping) && lane.surrounds(first.u-x, (first.v-xRise)/o.phase, second.u-y, (second.v-yRise)/o.phase, from, to) {
 		return
 	}
 	a = float64(a * first.square)
 	limit := lane.within(&lane.piece, a)
-	outside := lane.beyond(first.u, second.u, limit) > limit
+	outside := lane.isBeyond(first.u, second.u, limit)
 	for part := range lane.cuts {
 		x, y := first.u, second.u
-		first.next(lane.one)
-		second.next(lane.one)
-		next := lane.beyond(first.u, second.u, limit) > limit
+		first.next(o)
+		second.next(o)
+		next := lane.isBeyond(first.u, second.u, limit)
 		if outside || next {
 			lane.pieces = append(lane.pieces, piece{
 				sample: sample, part: part, every: 1, x: x, y: y,

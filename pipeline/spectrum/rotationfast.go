@@ -20,19 +20,17 @@ func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	}
 	marks := r.marks()
 	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], true)
-	m := r.pair[0]
 	live := ^uint32(0) >> (lanes - len(g.members))
 	for b, flags := range r.topBlocks() {
-		m.done[b] = flags & live
-		g.gather(r, b, m.done[b])
-		r.absorb(m.done[b], 1)
+		g.gather(r, b, flags&live)
+		r.absorb(flags & live)
 	}
 	g.limitPair(r)
-	for _, b := range r.others(r.blockNorms, live) {
+	for _, b := range r.inOrder(r.blockNorms, live) {
 		g.limitPair(r)
-		flags := r.passing(b, r.blockNorms) & live &^ m.done[b]
+		flags := r.passing(b, r.blockNorms) & live &^ r.pair[0].done[b]
 		g.gather(r, b, flags)
-		r.absorb(flags, absorbPieces)
+		r.absorb(flags)
 	}
 	for l := range g.members {
 		o := &g.members[l]

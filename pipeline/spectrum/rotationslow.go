@@ -24,22 +24,20 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	g.march(r.pair[1])
 	marks := r.marks()
 	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], false)
-	m := r.pair[0]
-	for b, flags := range r.topBlocks() {
-		m.done[b] = flags & live
-		g.gather(r, b, m.done[b])
-		r.absorb(m.done[b], 1)
-	}
 	lines := r.blockNorms
 	if g.stride != nil {
 		lines = r.strideNorms[g.level]
 	}
+	for b, flags := range r.topBlocks() {
+		g.gather(r, b, flags&live)
+		r.absorb(flags & live)
+	}
 	g.limitPair(r)
-	for _, b := range r.others(lines, live) {
+	for _, b := range r.inOrder(lines, live) {
 		g.limitPair(r)
-		flags := r.passing(b, lines) & live &^ m.done[b]
+		flags := r.passing(b, lines) & live &^ r.pair[0].done[b]
 		g.gather(r, b, flags)
-		r.absorb(flags, absorbPieces)
+		r.absorb(flags)
 	}
 	for ; live != 0; live &= live - 1 {
 		l := bits.TrailingZeros32(live)
