@@ -6,8 +6,6 @@ import (
 	"runtime"
 	"time"
 
-	"golang.org/x/sync/errgroup"
-
 	"swaybook/db"
 	"swaybook/ingest"
 )
@@ -64,58 +62,8 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 		return Summary{}, err
 	}
 	w := newWriter(store, run, opts, len(files))
-
-	group, ctx := errgroup.WithContext(ctx)
-	jobs := make(chan job)
-	queue := make(chan job, queueLength)
-	group.Go(func() error { return dispatch(ctx, files, queue, jobs) })
-	for range opts.Workers {
-		group.Go(func() error { return work(ctx, run.reader, jobs) })
-	}
-	group.Go(func() error { return w.write(ctx, queue) })
-	err = group.Wait()
+	err = w.stage().run(ctx, files)
 	return w.finish(ctx, err)
-}
-
-// queueLength is how many files may be read and solved ahead of the writer: as
-// many as a batch, so that the workers go on while one is written. A component
-// waits there with its compressed samples and its spectra, some 40 kB.
-const queueLength = batchComponents
-
-// job is one file on its way; the worker answers on result, which holds one
-// value so that it never waits for the writer.
-type job struct {
-	file   ingest.Found
-	result chan result
-}
-
-// dispatch offers the files to the workers, and in the same order to the
-// writer. The bounded queue holds it back where the writer is behind.
-func dispatch(ctx context.Context, files []ingest.Found, queue, jobs chan<- job) error {
-	defer close(queue)
-	defer close(jobs)
-	for _, f := range files {
-		j := job{file: f, result: make(chan result, 1)}
-		for _, c := range []chan<- job{queue, jobs} {
-			select {
-			case c <- j:
-			case <-ctx.Done():
-				return ctx.Err()
-			}
-		}
-	}
-	return nil
-}
-
-func work(ctx context.Context, r *reader, jobs <-chan job) error {
-	for j := range jobs {
-		res, err := r.process(ctx, j.file)
-		if err != nil {
-			return err
-		}
-		j.result <- res
-	}
-	return ctx.Err()
 }
 
 func withDefaults(opts Options) Options {

@@ -263,7 +263,7 @@ func TestAFailingStoreStopsTheRun(t *testing.T) {
 	// The driver's own goroutines come and go; ours were waited for.
 	stacks := make([]byte, 1<<20)
 	stacks = stacks[:runtime.Stack(stacks, true)]
-	for _, name := range []string{"pipeline.dispatch", "pipeline.work", "pipeline.(*writer)"} {
+	for _, name := range []string{"pipeline.stage", "pipeline.(*writer)"} {
 		if bytes.Contains(stacks, []byte(name)) {
 			t.Errorf("%s runs on after the run", name)
 		}

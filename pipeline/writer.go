@@ -4,21 +4,13 @@ import (
 	"context"
 	"errors"
 	"slices"
-	"time"
 
 	"swaybook/db"
 	"swaybook/ingest"
 )
 
-// A batch is one transaction: large enough that its fixed cost disappears,
-// small enough that a crash loses about a second's work.
-const (
-	batchComponents = 128
-	batchTime       = time.Second
-)
-
-// writer stores results in the order of the queue, batch by batch. It runs in
-// one goroutine.
+// writer stores results in the order of the files, batch by batch. It runs in one
+// goroutine at a time.
 type writer struct {
 	store   Store
 	run     state
@@ -32,51 +24,17 @@ func newWriter(store Store, run state, opts Options, total int) *writer {
 	return &writer{store: store, run: run, opts: opts, total: total}
 }
 
-// write takes results until the queue ends or the context does. The batch in
-// hand is stored even then, since its work is done.
-func (w *writer) write(ctx context.Context, queue <-chan job) error {
-	for {
-		batch, last, err := w.collect(ctx, queue)
-		if errStore := w.storeBatch(context.WithoutCancel(ctx), batch); errStore != nil {
-			return errStore
-		}
-		if err != nil || last {
-			return err
-		}
+// stage is the run's way from files to the store.
+func (w *writer) stage() stage[ingest.Found, result] {
+	return stage[ingest.Found, result]{
+		workers: w.opts.Workers, clock: w.opts.Clock, process: w.run.reader.process,
+		weigh: func(res result) int { return max(1, len(res.channels)) }, store: w.storeBatch,
 	}
-}
-
-// collect waits for the results of one batch.
-func (w *writer) collect(ctx context.Context, queue <-chan job) (batch []result, last bool, err error) {
-	began := w.opts.Clock()
-	for components := 0; components < batchComponents && w.opts.Clock().Sub(began) < batchTime; {
-		var j job
-		select {
-		case next, ok := <-queue:
-			if !ok {
-				return batch, true, nil
-			}
-			j = next
-		case <-ctx.Done():
-			return batch, false, ctx.Err()
-		}
-		select {
-		case res := <-j.result:
-			batch = append(batch, res)
-			components += max(1, len(res.channels))
-		case <-ctx.Done():
-			return batch, false, ctx.Err()
-		}
-	}
-	return batch, false, nil
 }
 
 // storeBatch stores the results in one transaction and reports them once it is
 // committed.
 func (w *writer) storeBatch(ctx context.Context, batch []result) error {
-	if len(batch) == 0 {
-		return nil
-	}
 	reports := make([]FileReport, len(batch))
 	err := w.store.Update(ctx, func(tx *db.Tx) error {
 		for i, res := range batch {
