@@ -147,8 +147,13 @@ func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error
 }
 
 // DescribeComponent replaces a component's axis, label, rank and azimuth by
-// those of c, and its corner frequencies where c states them.
+// those of c, and its corner frequencies where c states them. Another azimuth of a
+// horizontal turns the pair that it belongs to, so what was rotated of that is
+// removed.
 func (t *Tx) DescribeComponent(ctx context.Context, componentID int64, c Component) error {
+	if err := t.forgetTurned(ctx, componentID, c.AzimuthDeg); err != nil {
+		return err
+	}
 	err := t.exec(ctx, `UPDATE component SET axis = ?, label = ?, rank = ?, azimuth_deg = ?,
 		low_cut_hz = coalesce(?, low_cut_hz), high_cut_hz = coalesce(?, high_cut_hz) WHERE id = ?`,
 		c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.LowCutHz, c.HighCutHz, componentID)
@@ -158,9 +163,35 @@ func (t *Tx) DescribeComponent(ctx context.Context, componentID int64, c Compone
 	return nil
 }
 
+// forgetTurned removes what was rotated of the component's record where its
+// azimuth is not the stored one.
+func (t *Tx) forgetTurned(ctx context.Context, componentID int64, azimuthDeg *float64) error {
+	rows, err := t.tx.QueryContext(ctx, `SELECT record_id FROM component WHERE id = ? AND azimuth_deg IS NOT ?`, componentID, azimuthDeg)
+	if err != nil {
+		return fmt.Errorf("describe component: %w", err)
+	}
+	turned, err := collect(rows, func(id *int64) []any { return []any{id} })
+	if err != nil {
+		return fmt.Errorf("describe component: %w", err)
+	}
+	for _, id := range turned {
+		if err := t.forgetRotated(ctx, id); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
 // SetRoles renames roles of a record's components, with their spectra and
-// measures: what has a key's role gets the value's. Roles may change places.
+// measures: what has a key's role gets the value's. Roles may change places. What
+// was rotated of the record's horizontals is removed, since these are others now.
 func (t *Tx) SetRoles(ctx context.Context, recordID int64, renamed map[string]string) error {
+	if len(renamed) == 0 {
+		return nil
+	}
+	if err := t.forgetRotated(ctx, recordID); err != nil {
+		return err
+	}
 	// Two steps through names that nothing else has, since roles are unique in a
 	// record at every moment.
 	const between = "was "

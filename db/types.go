@@ -18,6 +18,13 @@ const (
 	RoleV  = "v"
 )
 
+// Roles of what is computed of both horizontals over all directions: the median
+// and the maximum. They have spectra and measures, and no component.
+const (
+	RoleRotD50  = "rotd50"
+	RoleRotD100 = "rotd100"
+)
+
 // Names of the measures stored with every component.
 const (
 	MeasurePGA = "pga_m_s2"

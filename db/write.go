@@ -214,6 +214,29 @@ func upsert(table string, key, optional []string, override bool) string {
 	return fmt.Sprintf("INSERT INTO %s (%s) VALUES (%s) ON CONFLICT (%s) DO UPDATE SET %s RETURNING id", table, columns, marks, conflict, sets)
 }
 
+// PutRotated stores what was computed of a record's horizontals over all
+// directions, under RoleRotD50 or RoleRotD100, in place of what is stored.
+func (t *Tx) PutRotated(ctx context.Context, recordID, generationID int64, role string, s Spectra) error {
+	for _, table := range []string{"spectrum", "measure"} {
+		err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ? AND role = ? AND +generation_id = ?`, recordID, role, generationID)
+		if err != nil {
+			return fmt.Errorf("replace rotated %s: %w", table, err)
+		}
+	}
+	return t.addSpectra(ctx, recordID, role, generationID, s)
+}
+
+// forgetRotated removes what was computed of both horizontals of a record, in
+// every generation, because one of them is no longer what it was.
+func (t *Tx) forgetRotated(ctx context.Context, recordID int64) error {
+	for _, table := range []string{"spectrum", "measure"} {
+		if err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ? AND role IN ('`+RoleRotD50+`', '`+RoleRotD100+`')`, recordID); err != nil {
+			return fmt.Errorf("forget rotated %s: %w", table, err)
+		}
+	}
+	return nil
+}
+
 // timeText is the store's form of a time, NULL for the zero time.
 func timeText(at time.Time) any {
 	if at.IsZero() {

@@ -1,0 +1,119 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"fmt"
+)
+
+// Pair is a record's two horizontals, h1 and h2.
+type Pair struct {
+	RecordID int64
+	Code     string // the record's
+	// First and Second are the ids of the components.
+	First, Second           int64
+	FirstStepS, SecondStepS float64
+	// BetweenDeg is the azimuth of the second less that of the first, in degrees,
+	// where both are known.
+	BetweenDeg   float64
+	BetweenKnown bool
+}
+
+// Unrotated returns the pairs of the generation's records that lack what is
+// computed over all directions, in the order in which the records were stored.
+func (s *Snapshot) Unrotated(ctx context.Context) ([]Pair, error) {
+	return unrotated(ctx, s.tx, s.Generation.ID, "")
+}
+
+// IsUnrotated reports whether the record still holds this very pair, and lacks
+// what is computed of it over all directions.
+func (t *Tx) IsUnrotated(ctx context.Context, generationID int64, p Pair) (bool, error) {
+	found, err := unrotated(ctx, t.tx, generationID, "AND r.id = ?", p.RecordID)
+	return len(found) == 1 && found[0] == p, err
+}
+
+// unrotated looks for each record's rotated spectrum first, which is one step in
+// an index and all that there is to do in a store that is complete.
+func unrotated(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Pair, error) {
+	rows, err := q.QueryContext(ctx, `SELECT r.id, r.code, a.id, b.id, a.step_s, b.step_s,
+			coalesce(b.azimuth_deg - a.azimuth_deg, 0), b.azimuth_deg - a.azimuth_deg IS NOT NULL
+		FROM record r
+		CROSS JOIN component a ON a.record_id = r.id AND a.role = '`+RoleH1+`'
+		CROSS JOIN component b ON b.record_id = r.id AND b.role = '`+RoleH2+`'
+		WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.generation_id = ? AND s.damping_position = 0
+			AND s.role = '`+RoleRotD100+`' AND s.record_id = r.id) `+condition+`
+		ORDER BY r.id`, append([]any{generationID}, args...)...)
+	if err != nil {
+		return nil, fmt.Errorf("find unrotated pairs: %w", err)
+	}
+	pairs, err := collect(rows, func(p *Pair) []any {
+		return []any{&p.RecordID, &p.Code, &p.First, &p.Second, &p.FirstStepS, &p.SecondStepS, &p.BetweenDeg, &p.BetweenKnown}
+	})
+	if err != nil {
+		return nil, fmt.Errorf("find unrotated pairs: %w", err)
+	}
+	return pairs, nil
+}
+
+// StoredMotion is what the store holds of a component, still encoded.
+type StoredMotion struct {
+	samples           int
+	digest            string
+	data              []byte   // nil where there is none
+	sd                [][]byte // by damping
+	periods, dampings int
+}
+
+// ReadPair reads what is stored of a pair's components in one generation.
+func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, second StoredMotion, err error) {
+	tx, err := s.read.BeginTx(ctx, nil)
+	if err != nil {
+		return first, second, fmt.Errorf("begin reading: %w", explain(err))
+	}
+	defer tx.Rollback()
+	if first, err = readMotion(ctx, tx, g, p.First); err == nil {
+		second, err = readMotion(ctx, tx, g, p.Second)
+	}
+	if err != nil {
+		return first, second, fmt.Errorf("read pair of record %s: %w", p.Code, err)
+	}
+	return first, second, nil
+}
+
+func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64) (StoredMotion, error) {
+	m := StoredMotion{periods: len(g.Grid.PeriodsS), dampings: len(g.Grid.Dampings)}
+	err := tx.QueryRowContext(ctx, `SELECT c.samples, coalesce(s.sha256, ''), s.data FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE c.id = ?`, componentID).
+		Scan(&m.samples, &m.digest, &m.data)
+	if err != nil {
+		return m, err
+	}
+	// The plus keeps the generation, which nearly every spectrum has, from being
+	// taken for the better index.
+	rows, err := tx.QueryContext(ctx, `SELECT s.sd_m FROM component c
+		JOIN spectrum s ON s.record_id = c.record_id AND s.role = c.role AND +s.generation_id = ?
+		WHERE c.id = ? ORDER BY s.damping_position`, g.ID, componentID)
+	if err != nil {
+		return m, err
+	}
+	m.sd, err = collect(rows, func(sd *[]byte) []any { return []any{sd} })
+	return m, err
+}
+
+// Decode returns the samples in m/s², checked against their digest, and the SD in
+// m, the grid's dampings outside and its periods inside: the doubles that were
+// stored. The error says what is damaged.
+func (m StoredMotion) Decode() (samples, sd []float64, err error) {
+	if samples, err = DecodeSamples(m.data, m.samples, m.digest); err != nil {
+		return nil, nil, err
+	}
+	if len(m.sd) != m.dampings {
+		return nil, nil, fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings)
+	}
+	sd = make([]float64, len(m.sd)*m.periods)
+	for i, text := range m.sd {
+		if err := decodeOrdinates(sd[i*m.periods:(i+1)*m.periods], text); err != nil {
+			return nil, nil, err
+		}
+	}
+	return samples, sd, nil
+}
