@@ -8,7 +8,6 @@ import (
 	"path"
 	"path/filepath"
 	"strings"
-	"sync"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -165,15 +164,11 @@ func (r *reader) solve(c ingest.Channel) (solved, error) {
 	if err != nil {
 		return solved{}, err
 	}
-	sd := solver.SD(nil, c.Acceleration)
-	pga, pgv, pgd := spectrum.Peaks(c.StepS, c.Acceleration)
-	s := solved{channel: c, samples: len(c.Acceleration)}
+	var peaks spectrum.GroundPeaks
+	peaks.PGA, peaks.PGV, peaks.PGD = spectrum.Peaks(c.StepS, c.Acceleration)
+	s := solved{channel: c, samples: len(c.Acceleration), spectra: r.solvers.spectra(solver.SD(nil, c.Acceleration), peaks)}
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
 	s.channel.Acceleration = nil
-	s.spectra.Measures = map[string]float64{db.MeasurePGA: pga, db.MeasurePGV: pgv, db.MeasurePGD: pgd}
-	for n := len(r.solvers.grid.PeriodsS); len(sd) > 0; sd = sd[n:] {
-		s.spectra.SD = append(s.spectra.SD, sd[:n])
-	}
 	return s, nil
 }
 
@@ -195,35 +190,4 @@ func (res result) rejected(err error) result {
 func stemOf(file string) string {
 	base := path.Base(filepath.ToSlash(file))
 	return strings.TrimSuffix(base, path.Ext(base))
-}
-
-// solvers keeps the solver of each time step in use.
-type solvers struct {
-	grid   db.Grid
-	mu     sync.Mutex
-	byStep map[float64]*spectrum.Solver
-}
-
-// maxSolvers bounds what odd time steps may cost: an archive has a handful of
-// steps, and a solver of the default grid takes a few hundred kilobytes.
-const maxSolvers = 64
-
-// get returns the solver for the step, with the grid's dampings outside and its
-// periods inside.
-func (s *solvers) get(stepS float64) (*spectrum.Solver, error) {
-	s.mu.Lock()
-	defer s.mu.Unlock()
-	if solver, ok := s.byStep[stepS]; ok {
-		return solver, nil
-	}
-	grid := spectrum.Grid{PeriodsS: s.grid.PeriodsS, Dampings: s.grid.Dampings}
-	solver, err := spectrum.NewSolver(spectrum.NigamJennings, stepS, grid.Oscillators())
-	if err != nil {
-		return nil, err
-	}
-	if len(s.byStep) >= maxSolvers {
-		clear(s.byStep)
-	}
-	s.byStep[stepS] = solver
-	return solver, nil
 }

@@ -14,6 +14,7 @@ import (
 type Store interface {
 	Held(ctx context.Context, sha256 string) (path string, ok bool, err error)
 	View(ctx context.Context, f func(*db.Snapshot) error) error
+	ReadPair(ctx context.Context, g db.Generation, p db.Pair) (first, second db.StoredMotion, err error)
 	Update(ctx context.Context, f func(*db.Tx) error) error
 }
 
@@ -38,19 +39,24 @@ type Options struct {
 	// Progress is called by the writer after each file, in path order; may be
 	// nil.
 	Progress func(Progress)
+	// SkipRotation leaves out the second stage; a later run makes up for it.
+	SkipRotation bool
+	// Rotated is called by the writer after each record of the second stage, in
+	// the order in which they were stored; may be nil.
+	Rotated func(Rotated)
 }
 
 // Progress is one file done.
 type Progress struct {
 	Done, Total int
-	Components  int // stored so far
 	File        FileReport
 }
 
-// Run ingests the files under opts.Paths into the store. The summary tells what
-// happened to every file; it is valid beside an error too, for what had been
-// committed by then. A cancelled context ends the run after the batch in hand;
-// the error is then the context's.
+// Run ingests the files under opts.Paths into the store, and then rotates the
+// horizontals of every record that has two and lacks that. The summary tells what
+// happened to every file and record; it is valid beside an error too, for what had
+// been committed by then. A cancelled context ends the run after the batch in
+// hand; the error is then the context's.
 func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	opts = withDefaults(opts)
 	files, err := ingest.Discover(opts.Paths)
@@ -62,7 +68,10 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 		return Summary{}, err
 	}
 	w := newWriter(store, run, opts, len(files))
-	err = w.stage().run(ctx, files)
+	err = w.files(ctx, files)
+	if err == nil && !opts.SkipRotation {
+		err = w.rotate(ctx)
+	}
 	return w.finish(ctx, err)
 }
 
@@ -72,6 +81,9 @@ func withDefaults(opts Options) Options {
 	}
 	if opts.Progress == nil {
 		opts.Progress = func(Progress) {}
+	}
+	if opts.Rotated == nil {
+		opts.Rotated = func(Rotated) {}
 	}
 	return opts
 }

@@ -23,13 +23,16 @@ var testGrid = db.Grid{PeriodsS: []float64{0.1, 0.5, 1}, Dampings: []float64{0.0
 
 // at2 is an invented component in the .AT2 layout, in g.
 func at2(event, station, component string, seed uint64) string {
-	const n = 600
+	return at2Of(event, station, component, 0.01, 600, seed)
+}
+
+func at2Of(event, station, component string, stepS float64, n int, seed uint64) string {
 	rng := rand.New(rand.NewPCG(seed, 3))
 	var b strings.Builder
-	fmt.Fprintf(&b, "INVENTED RECORD\n%s, 3/12/2026, %s, %s\nACCELERATION TIME SERIES IN UNITS OF G\nNPTS=  %d, DT=   .0100 SEC\n", event, station, component, n)
+	fmt.Fprintf(&b, "INVENTED RECORD\n%s, 3/12/2026, %s, %s\nACCELERATION TIME SERIES IN UNITS OF G\nNPTS=  %d, DT=   %.4f SEC\n", event, station, component, n, stepS)
 	for i := range n {
 		fmt.Fprintf(&b, "%15.7E", 0.1*rng.NormFloat64())
-		if i%5 == 4 {
+		if i%5 == 4 || i == n-1 {
 			b.WriteByte('\n')
 		}
 	}
@@ -103,7 +106,9 @@ func dump(t *testing.T, store *db.Store) []string {
 		wanted := map[db.SpectrumKey]bool{}
 		for _, c := range components {
 			code[c.RecordID] = c.Record.Code
-			wanted[db.SpectrumKey{RecordID: c.RecordID, Role: c.Role}] = true
+			for _, role := range []string{c.Role, db.RoleRotD50, db.RoleRotD100} {
+				wanted[db.SpectrumKey{RecordID: c.RecordID, Role: role}] = true
+			}
 			out = append(out, fmt.Sprint(c.Record.Code, c.Role, c.Label, c.AzimuthDeg == nil, c.Record.Siting, filepath.Base(c.SourcePath), c.PGA, c.PGV, c.PGD))
 		}
 		for d := range v.Generation.Grid.Dampings {
@@ -120,13 +125,13 @@ func dump(t *testing.T, store *db.Store) []string {
 	if err != nil {
 		t.Fatal(err)
 	}
-	return out
+	return append(out, measures(t, store)...)
 }
 
 func TestRunStoresAndHolds(t *testing.T) {
 	dir, store := archive(t, 4), newStore(t)
 	got := run(t, store, options(dir))
-	want := Summary{Files: 16, Stored: 12, StoredFiles: 12, Held: 1, Skipped: 1, Rejected: 2, Records: 4}
+	want := Summary{Files: 16, Stored: 12, StoredFiles: 12, Held: 1, Skipped: 1, Rejected: 2, Records: 4, Rotated: 4}
 	if got != want {
 		t.Errorf("first run = %+v, want %+v", got, want)
 	}

@@ -17,17 +17,22 @@ type FileReport struct {
 	Warnings   []string
 }
 
-// Summary counts what became of the files of a run.
+// Summary counts what became of the files of a run, and of the records whose
+// horizontals it rotated.
 type Summary struct {
-	Files       int     `json:"files"`        // seen
-	Stored      int     `json:"stored"`       // components
-	StoredFiles int     `json:"stored_files"` // files that gave them
-	Held        int     `json:"held"`         // files whose content was in the store already
-	Skipped     int     `json:"skipped"`      // files that are no ground acceleration
-	Rejected    int     `json:"rejected"`     // files that could not be read, or stored
-	Channels    int     `json:"rejected_channels"`
-	Records     int     `json:"records"` // new records
-	Seconds     float64 `json:"seconds"`
+	Files       int `json:"files"`        // seen
+	Stored      int `json:"stored"`       // components
+	StoredFiles int `json:"stored_files"` // files that gave them
+	Held        int `json:"held"`         // files whose content was in the store already
+	Skipped     int `json:"skipped"`      // files that are no ground acceleration
+	Rejected    int `json:"rejected"`     // files that could not be read, or stored
+	Channels    int `json:"rejected_channels"`
+	Records     int `json:"records"` // new records
+	Rotated     int `json:"rotated"` // records
+	// Assumed counts those rotated at an assumed right angle.
+	Assumed    int     `json:"rotated_at_assumed_right_angle"`
+	NotRotated int     `json:"not_rotated"` // records whose horizontals make no pair
+	Seconds    float64 `json:"seconds"`
 }
 
 func (s *Summary) add(f FileReport) {
@@ -46,6 +51,17 @@ func (s *Summary) add(f FileReport) {
 	case Rejected:
 		s.Rejected++
 	}
+}
+
+func (s *Summary) addRotated(r Rotated) {
+	switch {
+	case r.Reason != "":
+		s.NotRotated++
+		return
+	case r.Assumed:
+		s.Assumed++
+	}
+	s.Rotated++
 }
 
 // Complete reports whether nothing was rejected.

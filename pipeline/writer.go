@@ -24,12 +24,12 @@ func newWriter(store Store, run state, opts Options, total int) *writer {
 	return &writer{store: store, run: run, opts: opts, total: total}
 }
 
-// stage is the run's way from files to the store.
-func (w *writer) stage() stage[ingest.Found, result] {
+// files brings the files to the store.
+func (w *writer) files(ctx context.Context, files []ingest.Found) error {
 	return stage[ingest.Found, result]{
 		workers: w.opts.Workers, clock: w.opts.Clock, process: w.run.reader.process,
 		weigh: func(res result) int { return max(1, len(res.channels)) }, store: w.storeBatch,
-	}
+	}.run(ctx, files)
 }
 
 // storeBatch stores the results in one transaction and reports them once it is
@@ -51,7 +51,7 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 	for _, report := range reports {
 		w.done++
 		w.summary.add(report)
-		w.opts.Progress(Progress{Done: w.done, Total: w.total, Components: w.summary.Stored, File: report})
+		w.opts.Progress(Progress{Done: w.done, Total: w.total, File: report})
 	}
 	return nil
 }

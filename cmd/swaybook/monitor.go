@@ -83,7 +83,7 @@ func (m *monitor) file(p pipeline.Progress) {
 		m.logged = time.Now()
 		rate := float64(p.Done) / time.Since(m.started).Seconds()
 		left := time.Duration(float64(p.Total-p.Done) / rate * float64(time.Second)).Round(time.Second)
-		m.logger.Info("ingesting", "files", p.Done, "of", p.Total, "components", p.Components, "files_per_s", int(rate), "left", left.String())
+		m.logger.Info("ingesting", "files", p.Done, "of", p.Total, "files_per_s", int(rate), "left", left.String())
 	}
 }
 
