@@ -25,6 +25,7 @@ func demoCommand() *cli.Command {
 			&cli.IntFlag{Name: "events", Usage: "earthquakes (default: the region's twelve)"},
 			&cli.IntFlag{Name: "stations", Usage: "stations (default: the region's twenty)"},
 			&cli.IntFlag{Name: "seed", Value: 1, Usage: "seed of the random numbers"},
+			rotationFlag(),
 			&cli.BoolFlag{Name: "files-only", Usage: "write the files and stop"},
 		},
 		Action: func(c *cli.Context) error {
@@ -41,6 +42,7 @@ type demoOptions struct {
 	dir       string
 	store     string
 	region    demo.Options
+	rotation  bool
 	filesOnly bool
 	monitor   *monitor
 }
@@ -59,7 +61,7 @@ func newDemoOptions(c *cli.Context) (o demoOptions, err error) {
 		return o, err
 	}
 	o = demoOptions{
-		dir: c.String("dir"), store: c.String("store"), filesOnly: c.Bool("files-only"),
+		dir: c.String("dir"), store: c.String("store"), rotation: c.Bool("rotation"), filesOnly: c.Bool("files-only"),
 		region:  demo.Options{Events: c.Int("events"), Stations: c.Int("stations"), Seed: c.Int("seed"), Damaged: true},
 		monitor: newMonitor(logger, c.App.ErrWriter, c.Bool("quiet")),
 	}
@@ -85,7 +87,11 @@ func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
 	if o.filesOnly || p.err != nil {
 		return p.err
 	}
-	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s\n", quoted(o.store), quoted(o.dir), quoted(written.Catalogue))
+	rotation := ""
+	if !o.rotation {
+		rotation = " --rotation=false"
+	}
+	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s%s\n", quoted(o.store), quoted(o.dir), quoted(written.Catalogue), rotation)
 	if p.err != nil {
 		return p.err
 	}
@@ -112,7 +118,7 @@ func quoted(word string) string {
 // of them, and no failure of the demo.
 func demoIngest(ctx context.Context, o demoOptions, catalogue string, w io.Writer) error {
 	in := ingestOptions{store: o.store, monitor: o.monitor, pipeline: pipelineOptions(o.store, o.monitor)}
-	in.pipeline.Paths = []string{o.dir}
+	in.pipeline.Paths, in.pipeline.SkipRotation = []string{o.dir}, !o.rotation
 	if err := in.readCatalogue(catalogue); err != nil {
 		return err
 	}

@@ -33,6 +33,7 @@ func ingestCommand() *cli.Command {
 			&cli.StringFlag{Name: "periods", Usage: "periods of a new store's grid in s: a `LIST` such as 0.1,0.2,1 or @FILE"},
 			&cli.StringFlag{Name: "dampings", Usage: "damping ratios of a new store's grid, a `LIST` such as 2%,5%,0.1"},
 			&cli.IntFlag{Name: "workers", Usage: "files in work at the same time (default: one a processor)"},
+			rotationFlag(),
 			&cli.BoolFlag{Name: "json", Usage: "print the summary as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -43,6 +44,10 @@ func ingestCommand() *cli.Command {
 			return runIngest(c.Context, o, c.App.Writer)
 		},
 	}
+}
+
+func rotationFlag() cli.Flag {
+	return &cli.BoolFlag{Name: "rotation", Value: true, Usage: "compute RotD50 and RotD100 of the horizontal pairs that lack them; --rotation=false leaves that to a later run"}
 }
 
 // maxWorkers is more than any machine can feed.
@@ -68,6 +73,7 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	o.pipeline = pipelineOptions(o.store, o.monitor)
 	o.pipeline.Paths = c.Args().Slice()
 	o.pipeline.Workers = c.Int("workers")
+	o.pipeline.SkipRotation = !c.Bool("rotation")
 	if n := c.Int("workers"); c.IsSet("workers") && (n < 1 || n > maxWorkers) {
 		return o, usagef("--workers %d: want 1 to %d", n, maxWorkers)
 	}
@@ -87,7 +93,7 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 
 func pipelineOptions(store string, m *monitor) pipeline.Options {
 	return pipeline.Options{
-		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file,
+		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Rotated: m.record,
 		Own: map[string]string{store: "the store itself", store + "-wal": "the store's log", store + "-shm": "the store's log"},
 	}
 }
@@ -174,6 +180,8 @@ type ingestReport struct {
 	SkippedOmitted  int            `json:"skipped_files_omitted"`
 	RejectedOmitted int            `json:"rejected_files_omitted"`
 	Warnings        []warningCount `json:"warnings"`
+	// Unfit lists why horizontal pairs were not rotated.
+	Unfit []reasonCount `json:"not_rotated_by_reason"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
 }
@@ -182,6 +190,21 @@ type ingestReport struct {
 type causeCount struct {
 	Cause string `json:"cause"`
 	Count int    `json:"count"`
+}
+
+// warningCount is one warning with how often it was given and where first.
+type warningCount struct {
+	Text  string `json:"warning"`
+	Count int    `json:"count"`
+	First string `json:"first"`
+}
+
+// reasonCount is one reason why pairs were not rotated, how many, and the record
+// of the first.
+type reasonCount struct {
+	Reason string `json:"reason"`
+	Count  int    `json:"count"`
+	First  string `json:"first"`
 }
 
 // fileNote is one file that was not stored and why.
@@ -194,8 +217,14 @@ type fileNote struct {
 func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) ingestReport {
 	m := o.monitor
 	r := ingestReport{
-		Store: o.store, Summary: summary, ByCause: []causeCount{}, Warnings: m.warnings, Catalogue: []string{},
+		Store: o.store, Summary: summary, ByCause: []causeCount{}, Warnings: []warningCount{}, Unfit: []reasonCount{}, Catalogue: []string{},
 		SkippedFiles: m.skipped.files, SkippedOmitted: m.skipped.omitted, RejectedFiles: m.rejected.files, RejectedOmitted: m.rejected.omitted,
+	}
+	for _, w := range m.warnings {
+		r.Warnings = append(r.Warnings, warningCount{w.text, w.count, w.first})
+	}
+	for _, u := range m.unfit {
+		r.Unfit = append(r.Unfit, reasonCount{u.text, u.count, u.first})
 	}
 	for _, cause := range slices.Sorted(maps.Keys(m.causes)) {
 		r.ByCause = append(r.ByCause, causeCount{cause, m.causes[cause]})
@@ -232,7 +261,8 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	if r.Channels > 0 {
 		p.printf("  channels rejected from files stored     %7d\n", r.Channels)
 	}
-	if r.Stored == 0 {
+	r.printRotation(p)
+	if r.Stored == 0 && r.Rotated == 0 {
 		p.printf("Nothing new was stored.\n")
 	}
 	p.notes("Skipped:", r.SkippedFiles, r.SkippedOmitted, "--json lists them")
@@ -253,6 +283,20 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 		p.printf("Catalogue: %s\n", note)
 	}
 	return p.err
+}
+
+func (r ingestReport) printRotation(p *printer) {
+	assumed := ""
+	if r.Assumed > 0 {
+		assumed = fmt.Sprintf("  of %d an azimuth is unknown, a right angle was assumed", r.Assumed)
+	}
+	p.printf("  records rotated                         %7d%s\n", r.Rotated, assumed)
+	if r.NotRotated > 0 {
+		p.printf("  records whose horizontals do not pair   %7d\n", r.NotRotated)
+	}
+	for _, u := range r.Unfit {
+		p.printf("    %s: %d, first %s\n", u.Reason, u.Count, u.First)
+	}
 }
 
 // maxLines is how many single files the text names of a kind.

@@ -5,6 +5,7 @@ import (
 	"log/slog"
 	"os"
 	"regexp"
+	"strings"
 	"time"
 
 	"github.com/schollz/progressbar/v3"
@@ -29,13 +30,14 @@ type monitor struct {
 	stderr   io.Writer
 	terminal bool
 	quiet    bool
-	bar      *progressbar.ProgressBar
+	bar      *progressbar.ProgressBar // of the stage at work
+	rotating bool                     // whether that is the second
 	started  time.Time
 	logged   time.Time
 
 	skipped, rejected notes
 	causes            map[string]int // rejections by cause
-	warnings          []warningCount
+	warnings, unfit   tally          // unfit: why pairs were not rotated
 }
 
 // notes is a list of single files, the first of them.
@@ -52,18 +54,33 @@ func (n *notes) add(f fileNote) {
 	n.files = append(n.files, f)
 }
 
-// warningCount is one warning with how often it was given and where first.
-type warningCount struct {
-	Text  string `json:"warning"`
-	Count int    `json:"count"`
-	First string `json:"first"`
+// tally counts equal remarks.
+type tally []remark
+
+// remark is one text with how often it was said and of what first.
+type remark struct {
+	text  string
+	count int
+	first string
+}
+
+func (t *tally) add(text, of string) {
+	for i := range *t {
+		if (*t)[i].text == text {
+			(*t)[i].count++
+			return
+		}
+	}
+	if len(*t) < maxNotes {
+		*t = append(*t, remark{text, 1, of})
+	}
 }
 
 func newMonitor(logger *slog.Logger, stderr io.Writer, quiet bool) *monitor {
 	now := time.Now()
 	return &monitor{
 		logger: logger, stderr: stderr, terminal: isTerminal(stderr), quiet: quiet, started: now, logged: now,
-		skipped: notes{files: []fileNote{}}, rejected: notes{files: []fileNote{}}, causes: map[string]int{}, warnings: []warningCount{},
+		skipped: notes{files: []fileNote{}}, rejected: notes{files: []fileNote{}}, causes: map[string]int{},
 	}
 }
 
@@ -75,15 +92,36 @@ func isTerminal(w io.Writer) bool {
 // file takes note of one file done.
 func (m *monitor) file(p pipeline.Progress) {
 	m.note(p.File)
+	m.show("ingesting", "files", p.Done, p.Total)
+}
+
+// record takes note of one record of the second stage done.
+func (m *monitor) record(r pipeline.Rotated) {
+	if !m.rotating {
+		m.finish()
+		m.rotating, m.bar, m.started = true, nil, time.Now()
+	}
+	if r.Reason != "" {
+		reason, _, _ := strings.Cut(r.Reason, ": ")
+		m.unfit.add(reason, r.Record)
+		if !m.terminal {
+			m.logger.Warn("not rotated", "record", r.Record, "reason", r.Reason)
+		}
+	}
+	m.show("rotating", "records", r.Done, r.Total)
+}
+
+// show tells how far a stage is.
+func (m *monitor) show(doing, things string, done, total int) {
 	switch {
 	case m.quiet:
 	case m.terminal:
-		m.showBar(p)
+		m.showBar(doing, things, done, total)
 	case time.Since(m.logged) >= logInterval:
 		m.logged = time.Now()
-		rate := float64(p.Done) / time.Since(m.started).Seconds()
-		left := time.Duration(float64(p.Total-p.Done) / rate * float64(time.Second)).Round(time.Second)
-		m.logger.Info("ingesting", "files", p.Done, "of", p.Total, "files_per_s", int(rate), "left", left.String())
+		rate := float64(done) / time.Since(m.started).Seconds()
+		left := time.Duration(float64(total-done) / rate * float64(time.Second)).Round(time.Second)
+		m.logger.Info(doing, things, done, "of", total, things+"_per_s", int(rate), "left", left.String())
 	}
 }
 
@@ -96,7 +134,7 @@ func (m *monitor) note(f pipeline.FileReport) {
 		m.causes[general(c.Text)]++
 	}
 	for _, text := range f.Warnings {
-		m.count(text, f.Path)
+		m.warnings.add(text, f.Path)
 	}
 	// A line in the middle of the bar would tear it; the report repeats them.
 	if m.terminal {
@@ -107,20 +145,6 @@ func (m *monitor) note(f pipeline.FileReport) {
 	}
 }
 
-// count adds up equal warnings, which come once a file of a kind.
-func (m *monitor) count(text, path string) {
-	for i := range m.warnings {
-		if m.warnings[i].Text == text {
-			m.warnings[i].Count++
-			return
-		}
-	}
-	if len(m.warnings) >= maxNotes {
-		return
-	}
-	m.warnings = append(m.warnings, warningCount{Text: text, Count: 1, First: path})
-}
-
 // particulars are what differs between files with one cause: names, quoted
 // words and numbers.
 var particulars = regexp.MustCompile(`"[^"]*"|\brecord \S+|\bfrom \S+?\)|[-+]?[0-9][-+.0-9eE]*`)
@@ -128,14 +152,14 @@ var particulars = regexp.MustCompile(`"[^"]*"|\brecord \S+|\bfrom \S+?\)|[-+]?[0
 // general is a cause without its particulars, by which causes are counted.
 func general(cause string) string { return particulars.ReplaceAllString(cause, "…") }
 
-func (m *monitor) showBar(p pipeline.Progress) {
+func (m *monitor) showBar(doing, things string, done, total int) {
 	if m.bar == nil {
-		m.bar = progressbar.NewOptions(p.Total,
-			progressbar.OptionSetWriter(m.stderr), progressbar.OptionSetDescription("ingesting"), progressbar.OptionShowCount(),
-			progressbar.OptionShowIts(), progressbar.OptionSetItsString("files"), progressbar.OptionSetPredictTime(true),
+		m.bar = progressbar.NewOptions(total,
+			progressbar.OptionSetWriter(m.stderr), progressbar.OptionSetDescription(doing), progressbar.OptionShowCount(),
+			progressbar.OptionShowIts(), progressbar.OptionSetItsString(things), progressbar.OptionSetPredictTime(true),
 			progressbar.OptionThrottle(100*time.Millisecond), progressbar.OptionClearOnFinish(), progressbar.OptionFullWidth())
 	}
-	m.bar.Set(p.Done) // the bar's own errors are a terminal that went away
+	m.bar.Set(done) // the bar's own errors are a terminal that went away
 }
 
 // finish clears the bar.
