@@ -56,7 +56,7 @@ func (s *Snapshot) Components(ctx context.Context) ([]HeldComponent, error) {
 // ComponentsOf returns the components that the file with this digest gave, as
 // the transaction sees them.
 func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
-	s := Snapshot{tx: t.tx, Generation: g}
+	s := Snapshot{tx: t.tx.tx, Generation: g}
 	return s.selectComponents(ctx, sha256)
 }
 

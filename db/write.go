@@ -2,7 +2,6 @@ package db
 
 import (
 	"context"
-	"database/sql"
 	"encoding/json"
 	"errors"
 	"fmt"
@@ -12,7 +11,7 @@ import (
 
 // Tx is one write transaction.
 type Tx struct {
-	tx *sql.Tx
+	tx session
 }
 
 // Update runs f in one transaction, which is committed if f returns nil and
@@ -26,7 +25,7 @@ func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 		return fmt.Errorf("begin transaction: %w", explain(err))
 	}
 	defer tx.Rollback()
-	if err := f(&Tx{tx: tx}); err != nil {
+	if err := f(&Tx{tx: newSession(tx)}); err != nil {
 		return err
 	}
 	if err := tx.Commit(); err != nil {

@@ -57,7 +57,7 @@ func archive(t *testing.T, stations int) string {
 	return dir
 }
 
-func put(t *testing.T, dir, name, text string) {
+func put(t testing.TB, dir, name, text string) {
 	t.Helper()
 	path := filepath.Join(dir, filepath.FromSlash(name))
 	if err := os.MkdirAll(filepath.Dir(path), 0o755); err != nil {
