@@ -54,9 +54,8 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 }
 
 func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, generation int64, computed Spectra) error {
-	var text []byte
-	for i, sd := range computed.SD {
-		text = encodeOrdinates(text[:0], sd)
+	computed.Encode()
+	for i, text := range computed.text {
 		err := t.exec(ctx, `INSERT INTO spectrum (generation_id, damping_position, role, record_id, sd_m) VALUES (?, ?, ?, ?, ?)`,
 			generation, i, role, recordID, text)
 		if err != nil {

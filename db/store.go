@@ -62,11 +62,16 @@ func (s *Store) Close() error {
 // Path returns the path under which the store was opened.
 func (s *Store) Path() string { return s.path }
 
+// writing are the pragmas of the connection that writes. The pages of a batch need
+// not all stay in memory, since those that find no room go to the log at once; 8 MB
+// hold the upper levels of the indices.
+const writing = "_txlock=immediate&_pragma=cache_size(-8192)"
+
 func openWriter(ctx context.Context, path string) (*Store, error) {
 	if err := refuseForeign(ctx, path); err != nil {
 		return nil, err
 	}
-	write, err := sql.Open("sqlite", dsn(path, "rwc", "_txlock=immediate&_pragma=cache_size(-32768)"))
+	write, err := sql.Open("sqlite", dsn(path, "rwc", writing))
 	if err != nil {
 		return nil, err
 	}

@@ -126,4 +126,14 @@ type Generation struct {
 type Spectra struct {
 	SD       [][]float64
 	Measures map[string]float64
+	text     [][]byte // SD as it is stored, in its place
+}
+
+// Encode turns the SD into the form in which it is stored, which is then not left
+// to the transaction that stores it. SD is nil afterwards.
+func (s *Spectra) Encode() {
+	for _, sd := range s.SD {
+		s.text = append(s.text, encodeOrdinates(make([]byte, 0, ordinateWidth*len(sd)), sd))
+	}
+	s.SD = nil
 }

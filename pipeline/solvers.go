@@ -38,11 +38,13 @@ func (s *solvers) get(stepS float64) (*spectrum.Solver, error) {
 	return solver, nil
 }
 
-// spectra is what a solver's SD and the peaks are in the store.
+// spectra is what a solver's SD and the peaks are in the store, encoded by the
+// worker.
 func (s *solvers) spectra(sd []float64, peaks spectrum.GroundPeaks) db.Spectra {
 	out := db.Spectra{Measures: map[string]float64{db.MeasurePGA: peaks.PGA, db.MeasurePGV: peaks.PGV, db.MeasurePGD: peaks.PGD}}
 	for n := len(s.grid.PeriodsS); len(sd) > 0; sd = sd[n:] {
 		out.SD = append(out.SD, sd[:n])
 	}
+	out.Encode()
 	return out
 }
