@@ -10,13 +10,13 @@ import (
 // A batch is one transaction: large enough that its fixed cost disappears,
 // small enough that a crash loses about a second's work.
 const (
-	batchWeight = 128 // components, or records that were rotated
+	batchWeight = 64 // components, or records that were rotated
 	batchTime   = time.Second
 )
 
 // queueLength is how many items may be processed ahead of the writer: as many as
 // a batch, so that the workers go on while one is written. A component waits there
-// with its compressed samples and its spectra, some 40 kB.
+// with its compressed samples and its spectra, some 90 kB.
 const queueLength = batchWeight
 
 // stage processes items concurrently and stores the results in the items' order.
