@@ -16,7 +16,7 @@ const (
 
 // queueLength is how many items may be processed ahead of the writer: as many as
 // a batch, so that the workers go on while one is written. A component waits there
-// with its compressed samples and its spectra, some 90 kB.
+// with its compressed samples and its spectra, some 60 kB.
 const queueLength = batchWeight
 
 // stage processes items concurrently and stores the results in the items' order.
