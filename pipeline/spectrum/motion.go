@@ -42,8 +42,10 @@ type search struct {
 	seen       []uint32      // of each step of a block: the lanes that it is done with
 	stepScreen *kernel.StepScreen
 	screen     *kernel.Screen
-	top        *kernel.Row  // the greatest peak of each lane
-	start      *kernel.Mark // the state that a block of strides is marched again from
+	tops       *kernel.Screen // passes the greatest samples
+	none       []kernel.Line  // zeros, a line for each sample of a block
+	top        *kernel.Row    // the greatest peak of each lane
+	start      *kernel.Mark   // the state that a block of strides is marched again from
 	best       [lanes]float64
 }
 
@@ -51,7 +53,7 @@ func newMotion() *motion {
 	return &motion{search: search{
 		rows: make([]kernel.Row, blockSteps+1), rowFlags: make([]uint32, blockSteps+1),
 		states: make([]kernel.Mark, blockSteps), stepFlags: make([]uint32, blockSteps), seen: make([]uint32, blockSteps),
-		stepScreen: new(kernel.StepScreen), screen: new(kernel.Screen),
+		stepScreen: new(kernel.StepScreen), screen: new(kernel.Screen), tops: new(kernel.Screen), none: make([]kernel.Line, blockSteps+1),
 		top: new(kernel.Row), start: new(kernel.Mark),
 	}}
 }

@@ -91,9 +91,6 @@ func (s *Solver) RotD(first, second, sdFirst, sdSecond []float64) (rotd50, rotd1
 	for i := range s.fast {
 		s.fast[i].rotate(r, rotd50, rotd100)
 	}
-	for i := range s.free {
-		s.free[i].rotate(r, rotd50, rotd100)
-	}
 	for i := range rotd50 {
 		rotd50[i] = math.Ldexp(rotd50[i]*s.stepS*s.stepS, exponent)
 		rotd100[i] = max(math.Ldexp(rotd100[i]*s.stepS*s.stepS, exponent), sdFirst[i], sdSecond[i])

@@ -10,15 +10,9 @@ import (
 // rotate puts RotD50 and RotD100 of the members into dst50 and dst100, in units
 // of the motion.
 func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
-	live := uint32(0)
+	live := ^uint32(0) >> (lanes - len(g.members))
 	for l := range g.members {
-		if !g.members[l].free {
-			live |= 1 << l
-			g.begin(r, l)
-		}
-	}
-	if live == 0 {
-		return
+		g.begin(r, l)
 	}
 	g.march(r.pair[0])
 	g.march(r.pair[1])
@@ -39,8 +33,7 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 		g.gather(r, b, flags)
 		r.absorb(flags)
 	}
-	for ; live != 0; live &= live - 1 {
-		l := bits.TrailingZeros32(live)
+	for l := range g.members {
 		o := &g.members[l]
 		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
 		end := pairEnd{x.x, y.x, x.y / o.phase, y.y / o.phase}

@@ -16,7 +16,6 @@ type slow struct {
 	ringing ringing
 	reach   float64 // α: the displacement that unit ground acceleration can add between samples
 	growth  float64 // β: what between samples multiplies
-	free    bool    // whether rotations take it for fast
 	parts   int     // those that rotations cut a step into
 	part    *slow   // the oscillator for them, if more than one
 	tail    int     // steps of free ringing for sampled maxima, 0 for exact ones
@@ -53,15 +52,17 @@ func bounds(phase, damping float64) (reach, growth float64, ok bool) {
 	return reach, growth, growth > 0 && growth <= maxGrowth
 }
 
-// freeDamping is the damping below which rotations take a slow oscillator for a
-// fast one, unless they look at whole steps. Its motion goes on long after the
-// ground's, and the free vibration shows best that it grows no more.
+// Oscillators of so little damping ring on at nearly the same amplitude, so that
+// at phases above freePhase, where the bound on a step is loose, it lets all their
+// peaks through: their free vibration (type fast) shows best that it grows no more.
 const freeDamping = 0.005
+
+const freePhase = 0.9
 
 // newSlow returns the exact slow form, or false if the fast one is called for.
 func newSlow(index int, phase, damping float64) (slow, bool) {
 	reach, growth, ok := bounds(phase, damping)
-	if !ok {
+	if !ok || damping < freeDamping && phase > freePhase {
 		return slow{}, false
 	}
 	r := respond(phase, damping)
@@ -71,7 +72,6 @@ func newSlow(index int, phase, damping float64) (slow, bool) {
 		series: newSeries(phase, damping), ringing: newRinging(damping),
 		reach: reach, growth: growth, parts: partsOf(phase, damping),
 	}
-	o.free = o.parts > 1 && phase > 0.9 && damping < freeDamping
 	if o.parts > 1 {
 		part := newPiece(phase/float64(o.parts), damping)
 		o.part = &part

@@ -52,6 +52,9 @@ func newStrideGroups(list []slow, level int) []slowGroup {
 	return groups
 }
 
+// live flags the lanes of members.
+func (g *slowGroup) live() uint32 { return ^uint32(0) >> (lanes - len(g.members)) }
+
 // unit returns the unit of the peaks of a lane.
 func (g *slowGroup) unit(l int) float64 {
 	if g.stride != nil {
@@ -106,7 +109,7 @@ func (g *slowGroup) marchStrides(m *motion) {
 	}
 	mark := &m.marks[last]
 	from, to := m.block(last)
-	g.restart(m, last)
+	g.restart(m, last, ^uint32(0))
 	kernel.MarchSlow(g.eq, m.start, &m.marks[last+1], m.a[from:to+1])
 	for l := range g.members {
 		scale := math.Abs(g.members[l].eq.scale)
@@ -118,13 +121,14 @@ func (g *slowGroup) marchStrides(m *motion) {
 }
 
 // restart sets start to the state of the difference equation a step into a
-// block, from displacement and velocity at its start.
-func (g *slowGroup) restart(m *motion, b int) {
+// block, from displacement and velocity at its start, for the lanes flagged.
+func (g *slowGroup) restart(m *motion, b int, flags uint32) {
 	from, _ := m.block(b)
 	a, next := m.a[from], m.a[from+1]
 	mark := &m.marks[b]
 	m.start.X, m.start.Y = kernel.Row{}, kernel.Row{}
-	for l := range g.members {
+	for left := flags & g.live(); left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
 		o := &g.members[l]
 		r := &o.exact
 		u := mark.X[l]
@@ -154,7 +158,7 @@ func (g *slowGroup) sampled(m *motion) {
 // of the greatest sample, which usually settle the others.
 func (g *slowGroup) refine(m *motion) {
 	*m.stepScreen = *g.screen
-	live := ^uint32(0) >> (lanes - len(g.members))
+	live := g.live()
 	for l := range g.members {
 		o := &g.members[l]
 		if g.stride != nil {
@@ -252,8 +256,9 @@ func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row, flags uint3
 		kernel.TraceSlow(g.eq, &m.marks[b], m.a[from-1:from+len(rows)], rows[1:], flags)
 		return
 	}
-	g.restart(m, b)
-	for l := range g.members {
+	g.restart(m, b, flags)
+	for left := flags; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
 		rows[0][l] = m.marks[b].X[l] / g.members[l].eq.scale
 	}
 	rows[1] = m.start.X
@@ -263,15 +268,24 @@ func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row, flags uint3
 // enterTop looks into the steps on both sides of the greatest sample, which
 // raises best before the others are compared with it.
 func (g *slowGroup) enterTop(m *motion, rows []kernel.Row, a []float64, flags uint32) {
-	for ; flags != 0; flags &= flags - 1 {
-		l := bits.TrailingZeros32(flags)
-		at, top := 0, 0.0
-		for k := range rows {
-			if u := math.Abs(rows[k][l]); u > top {
-				at, top = k, u
+	for left := flags; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		m.tops.Limit[l] = float64(m.top[l] * (g.unit(l) / math.Abs(g.members[l].eq.scale)) * (1 - 0x1p-40))
+	}
+	rowFlags := m.rowFlags[:len(rows)]
+	kernel.ScreenRows(m.tops, rows, m.none[:len(rows)], rowFlags)
+	var at [lanes]int
+	for k, set := range rowFlags {
+		for set &= flags; set != 0; set &= set - 1 {
+			l := bits.TrailingZeros32(set)
+			if u := math.Abs(rows[k][l]); u > m.tops.Limit[l] {
+				at[l], m.tops.Limit[l] = k, u
 			}
 		}
-		for k := max(at-1, 0); k <= at && k < len(rows)-1; k++ {
+	}
+	for ; flags != 0; flags &= flags - 1 {
+		l := bits.TrailingZeros32(flags)
+		for k := max(at[l]-1, 0); k <= at[l] && k < len(rows)-1; k++ {
 			m.seen[k] |= 1 << l
 			m.best[l] = g.members[l].between(m.best[l], rows, l, k, a)
 		}

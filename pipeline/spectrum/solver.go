@@ -28,9 +28,8 @@ type Solver struct {
 	slow        []slowGroup
 	strides     [len(strides)]bool // those in use
 	fast        []fastGroup
-	free        []fastGroup // slow ones that rotations take for fast
-	scratch     *sync.Pool  // of *motion
-	pairs       *sync.Pool  // of *rotation
+	scratch     *sync.Pool // of *motion
+	pairs       *sync.Pool // of *rotation
 }
 
 // NewSolver prepares the coefficients of the oscillators, in any order and
@@ -64,7 +63,7 @@ func NewSolver(method Method, stepS float64, oscillators []Oscillator) (*Solver,
 		s.strides[i] = len(strided) > 0
 	}
 	s.slow = append(s.slow, newSlowGroups(list.slow)...)
-	s.fast, s.free = newFastGroups(list.fast), newFastGroups(list.free)
+	s.fast = newFastGroups(list.fast)
 	return s, nil
 }
 
@@ -73,7 +72,6 @@ type forms struct {
 	strided [len(strides)][]slow
 	slow    []slow
 	fast    []fast
-	free    []fast
 }
 
 func (s *Solver) add(list *forms, index int, o Oscillator) error {
@@ -88,9 +86,6 @@ func (s *Solver) add(list *forms, index int, o Oscillator) error {
 		list.slow = append(list.slow, s.method.newNewmark(index, phase, o.Damping))
 	} else if one, ok := newSlow(index, phase, o.Damping); !ok {
 		list.fast = append(list.fast, newFast(index, phase, o.Damping))
-	} else if one.free {
-		list.slow = append(list.slow, one)
-		list.free = append(list.free, newFast(index, phase, o.Damping))
 	} else if i := strideOf(phase, o.Damping); i >= 0 {
 		list.strided[i] = append(list.strided[i], one)
 	} else {
