@@ -27,8 +27,12 @@ func encodeOrdinates(dst []byte, values []float64) []byte {
 	return dst
 }
 
-// decodeOrdinates restores len(dst) values.
-func decodeOrdinates(dst []float64, data []byte) error {
+// Ordinates is the text of some SD in m, one a period, as it is stored.
+type Ordinates []byte
+
+// Decode sets dst to the values. The error says that the text does not hold
+// len(dst) of them.
+func (data Ordinates) Decode(dst []float64) error {
 	if len(data) != ordinateWidth*len(dst) {
 		return fmt.Errorf("spectrum of %d bytes, want %d values of %d", len(data), len(dst), ordinateWidth)
 	}

@@ -111,7 +111,7 @@ func (m StoredMotion) Decode() (samples, sd []float64, err error) {
 	}
 	sd = make([]float64, len(m.sd)*m.periods)
 	for i, text := range m.sd {
-		if err := decodeOrdinates(sd[i*m.periods:(i+1)*m.periods], text); err != nil {
+		if err := Ordinates(text).Decode(sd[i*m.periods : (i+1)*m.periods]); err != nil {
 			return nil, nil, err
 		}
 	}

@@ -65,9 +65,10 @@ func TestUnrotatedPairs(t *testing.T) {
 		}
 	}
 	err := s.View(t.Context(), func(v *Snapshot) error {
-		return v.Spectra(t.Context(), 1, map[SpectrumKey]bool{{RecordID: 2, Role: RoleRotD50}: true}, func(_ SpectrumKey, sd []float64) error {
-			if !slices.Equal(sd, []float64{8, 9, 10}) {
-				t.Errorf("rotated SD = %v", sd)
+		return v.Spectra(t.Context(), RoleRotD50, 1, Span{0, 3}, func(record int64, text Ordinates) error {
+			sd := make([]float64, 3)
+			if err := text.Decode(sd); err != nil || record != 2 || !slices.Equal(sd, []float64{8, 9, 10}) {
+				t.Errorf("rotated SD of record %d = %v, %v", record, sd, err)
 			}
 			return nil
 		})

@@ -3,7 +3,6 @@ package db
 import (
 	"context"
 	"database/sql"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"strings"
@@ -38,91 +37,79 @@ func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
 	return f(&Snapshot{tx: tx, Generation: g})
 }
 
-// HeldComponent is a stored component with all that is known of its record.
+// HeldComponent is a stored component with what is known of its record.
 type HeldComponent struct {
 	ID       int64
 	RecordID int64
 	Record   Record
 	Component
-	// PGA, PGV and PGD are the peaks of the ground motion in m/s², m/s and m.
-	PGA, PGV, PGD float64
+	// Of the ground motion, where DetailPeaks was asked for.
+	Peaks
 }
 
-// Components returns every held component, ordered by record code and role.
-func (s *Snapshot) Components(ctx context.Context) ([]HeldComponent, error) {
-	return s.selectComponents(ctx, "")
+// Peaks are PGA in m/s², PGV in m/s and PGD in m.
+type Peaks struct{ PGA, PGV, PGD float64 }
+
+// Details says what is read of components beside what a selection always needs:
+// ID, RecordID, Role, AzimuthDeg, StepS, Samples, and of the record Code, Siting
+// and Event. A question over thousands of components spends its time on what it
+// asks for.
+type Details uint
+
+// What can be asked for.
+const (
+	DetailRecord  Details = 1 << iota // the rest of Record
+	DetailPeaks                       // Peaks
+	DetailChannel                     // the rest of Component, the source file's description too
+	AllDetails    = DetailRecord | DetailPeaks | DetailChannel
+)
+
+// Components returns every held component with these details, ordered by record
+// code and role.
+func (s *Snapshot) Components(ctx context.Context, details Details) ([]HeldComponent, error) {
+	return s.selectComponents(ctx, details, "")
 }
 
 // ComponentsOf returns the components that the file with this digest gave, as
 // the transaction sees them.
 func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
 	s := Snapshot{tx: t.tx.tx, Generation: g}
-	return s.selectComponents(ctx, sha256)
+	return s.selectComponents(ctx, AllDetails, sha256)
 }
 
 // selectComponents reads the components of the file with this digest, of all
 // files where it is "". Events and stations are shared by many components and
 // read once.
-func (s *Snapshot) selectComponents(ctx context.Context, sha256 string) ([]HeldComponent, error) {
+func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256 string) ([]HeldComponent, error) {
 	condition, parents := "", ""
-	args := []any{s.Generation.ID}
+	var args []any
 	if sha256 != "" {
-		condition = "WHERE f.sha256 = ?2"
+		condition = "WHERE c.source_id = (SELECT id FROM source_file WHERE sha256 = ?) "
 		parents = ` WHERE id IN (SELECT r.%s_id FROM record r JOIN component c ON c.record_id = r.id
 			JOIN source_file f ON f.id = c.source_id WHERE f.sha256 = ?)`
 		args = append(args, sha256)
 	}
-	events, err := s.events(ctx, strings.ReplaceAll(parents, "%s", "event"), args[1:])
+	q := componentQuery{details: details}
+	var err error
+	q.events, err = s.events(ctx, strings.ReplaceAll(parents, "%s", "event"), args)
 	if err != nil {
 		return nil, err
 	}
-	stations, err := s.stations(ctx, strings.ReplaceAll(parents, "%s", "station"), args[1:])
-	if err != nil {
-		return nil, err
+	if details&DetailRecord != 0 {
+		q.stations, err = s.stations(ctx, strings.ReplaceAll(parents, "%s", "station"), args)
+		if err != nil {
+			return nil, err
+		}
 	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT c.id, r.id, r.code, r.event_id, r.station_id, r.instrument, r.siting, coalesce(r.start_at, ''), r.distance_km,
-			c.role, c.axis, c.label, c.rank, c.azimuth_deg, c.channel, c.step_s, c.samples, c.unit, c.processing,
-			c.low_cut_hz, c.high_cut_hz, c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format,
-			pga.value, pgv.value, pgd.value
-		FROM component c
-		JOIN record r ON r.id = c.record_id
-		JOIN source_file f ON f.id = c.source_id
-		LEFT JOIN measure pga ON pga.record_id = r.id AND pga.role = c.role AND pga.generation_id = ?1 AND pga.name = '`+MeasurePGA+`'
-		LEFT JOIN measure pgv ON pgv.record_id = r.id AND pgv.role = c.role AND pgv.generation_id = ?1 AND pgv.name = '`+MeasurePGV+`'
-		LEFT JOIN measure pgd ON pgd.record_id = r.id AND pgd.role = c.role AND pgd.generation_id = ?1 AND pgd.name = '`+MeasurePGD+`'
-		`+condition+` ORDER BY r.code, c.role, c.id`, args...)
+	rows, err := s.tx.QueryContext(ctx, q.text(s.Generation.ID)+condition+"ORDER BY r.code, c.role, c.id", args...)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
 	}
-	defer rows.Close()
-	var out []HeldComponent
-	for rows.Next() {
-		c, err := scanComponent(rows, events, stations)
-		if err != nil {
-			return nil, fmt.Errorf("read components: %w", err)
-		}
-		out = append(out, c)
-	}
-	return out, rows.Err()
-}
-
-func scanComponent(rows *sql.Rows, events map[int64]*Event, stations map[int64]*Station) (HeldComponent, error) {
-	var c HeldComponent
-	var event, station sql.NullInt64
-	var start, warnings string
-	err := rows.Scan(&c.ID, &c.RecordID, &c.Record.Code, &event, &station, &c.Record.Instrument, &c.Record.Siting, &start, &c.Record.DistanceKM,
-		&c.Role, &c.Axis, &c.Label, &c.Rank, &c.AzimuthDeg, &c.Channel, &c.StepS, &c.Samples, &c.Unit, &c.Processing,
-		&c.LowCutHz, &c.HighCutHz, &c.HeaderPeak, &warnings, &c.SourceID, &c.SourceLine, &c.SourcePath, &c.SourceSHA256, &c.SourceFormat,
-		&c.PGA, &c.PGV, &c.PGD)
+	out, err := q.collect(rows)
 	if err != nil {
-		return c, err
+		return nil, fmt.Errorf("read components: %w", err)
 	}
-	c.Record.Event = events[event.Int64]
-	c.Record.Station = stations[station.Int64]
-	if c.Record.Start, err = parseTime(start); err != nil {
-		return c, err
-	}
-	return c, json.Unmarshal([]byte(warnings), &c.Warnings)
+	return out, nil
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
@@ -173,40 +160,70 @@ func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[
 	return out, nil
 }
 
-// SpectrumKey names one stored spectrum of a damping.
-type SpectrumKey struct {
-	RecordID int64
-	Role     string
-}
+// Span is the positions From … To-1 of the grid's periods.
+type Span struct{ From, To int }
 
-// Spectra reads the SD spectra, in m, of all records at the grid's damping of
-// this position, for the wanted keys only, and calls f with each. sd has one
-// value a period of the grid and is reused: f must copy what it keeps.
-func (s *Snapshot) Spectra(ctx context.Context, dampingPosition int, wanted map[SpectrumKey]bool, f func(key SpectrumKey, sd []float64) error) error {
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, sd_m FROM spectrum WHERE generation_id = ? AND damping_position = ? ORDER BY role, record_id`,
-		s.Generation.ID, dampingPosition)
+// Spectra reads the SD spectra of a role at the grid's damping of this position,
+// at the periods of the span only, and calls f with each in the order of the
+// record's id. Each text holds one value a period. f must not keep it.
+func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
+	what, args := "sd_m", []any{s.Generation.ID, dampingPosition, role}
+	if periods != (Span{0, len(s.Generation.Grid.PeriodsS)}) {
+		what = "substr(sd_m, ?4, ?5)"
+		args = append(args, periods.From*ordinateWidth+1, (periods.To-periods.From)*ordinateWidth)
+	}
+	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, `+what+` FROM spectrum
+		WHERE generation_id = ?1 AND damping_position = ?2 AND role = ?3 ORDER BY record_id`, args...)
 	if err != nil {
 		return fmt.Errorf("read spectra: %w", err)
 	}
 	defer rows.Close()
-	sd := make([]float64, len(s.Generation.Grid.PeriodsS))
-	var key SpectrumKey
-	var data sql.RawBytes
+	var id int64
+	var text sql.RawBytes
 	for rows.Next() {
-		if err := rows.Scan(&key.RecordID, &key.Role, &data); err != nil {
+		if err := rows.Scan(&id, &text); err != nil {
 			return fmt.Errorf("read spectra: %w", err)
 		}
-		if !wanted[key] {
-			continue
+		if want := (periods.To - periods.From) * ordinateWidth; len(text) != want {
+			return fmt.Errorf("read spectra: record %d %s: %d bytes, want %d", id, role, len(text), want)
 		}
-		if err := decodeOrdinates(sd, data); err != nil {
-			return fmt.Errorf("read spectra: record %d %s: %w", key.RecordID, key.Role, err)
-		}
-		if err := f(key, sd); err != nil {
+		if err := f(id, Ordinates(text)); err != nil {
 			return err
 		}
 	}
 	return rows.Err()
+}
+
+// RotatedPeaks returns the peaks that are stored under a role of RotD, by the
+// record's id: those of the records whose spectra of that role are stored.
+func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Peaks, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, name, value FROM measure WHERE generation_id = ? AND role = ?`, s.Generation.ID, role)
+	if err != nil {
+		return nil, fmt.Errorf("read rotated peaks: %w", err)
+	}
+	type row struct {
+		id    int64
+		name  string
+		value float64
+	}
+	found, err := collect(rows, func(v *row) []any { return []any{&v.id, &v.name, &v.value} })
+	if err != nil {
+		return nil, fmt.Errorf("read rotated peaks: %w", err)
+	}
+	out := map[int64]Peaks{}
+	for _, v := range found {
+		p := out[v.id]
+		switch v.name {
+		case MeasurePGA:
+			p.PGA = v.value
+		case MeasurePGV:
+			p.PGV = v.value
+		case MeasurePGD:
+			p.PGD = v.value
+		}
+		out[v.id] = p
+	}
+	return out, nil
 }
 
 // Samples returns a component's acceleration in m/s², checked against its

@@ -184,7 +184,7 @@ func TestOrdinatesRoundTrip(t *testing.T) {
 		t.Fatalf("%d bytes, want %d", len(text), ordinateWidth*len(values))
 	}
 	got := make([]float64, len(values))
-	if err := decodeOrdinates(got, text); err != nil {
+	if err := Ordinates(text).Decode(got); err != nil {
 		t.Fatal(err)
 	}
 	for i := range values {
@@ -192,11 +192,11 @@ func TestOrdinatesRoundTrip(t *testing.T) {
 			t.Errorf("value %d = %v, want %v", i, got[i], values[i])
 		}
 	}
-	if err := decodeOrdinates(got, text[1:]); err == nil {
+	if err := Ordinates(text[1:]).Decode(got); err == nil {
 		t.Error("no error for a short spectrum")
 	}
 	text[5] = 'x'
-	if err := decodeOrdinates(got, text); err == nil {
+	if err := Ordinates(text).Decode(got); err == nil {
 		t.Error("no error for a damaged spectrum")
 	}
 }
@@ -223,7 +223,7 @@ func TestOrdinatesOfAllSizesRoundTrip(t *testing.T) {
 				values[i] = 0
 			}
 		}
-		if err := decodeOrdinates(got, encodeOrdinates(nil, values)); err != nil {
+		if err := Ordinates(encodeOrdinates(nil, values)).Decode(got); err != nil {
 			t.Fatalf("seed %d, round %d: %v", seed, round, err)
 		}
 		for i, x := range values {
@@ -289,7 +289,7 @@ func BenchmarkDecodeOrdinates(b *testing.B) {
 	text := encodeOrdinates(nil, values)
 	b.SetBytes(int64(8 * len(values)))
 	for b.Loop() {
-		if err := decodeOrdinates(values, text); err != nil {
+		if err := Ordinates(text).Decode(values); err != nil {
 			b.Fatal(err)
 		}
 	}

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -94,7 +95,7 @@ func TestUpdateIsWholeOrNothing(t *testing.T) {
 		t.Fatalf("Update = %v", err)
 	}
 	err = s.View(t.Context(), func(v *Snapshot) error {
-		cs, err := v.Components(t.Context())
+		cs, err := v.Components(t.Context(), AllDetails)
 		if len(cs) != 0 {
 			t.Errorf("%d components after a failed update", len(cs))
 		}
@@ -114,7 +115,7 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		if !v.Generation.Grid.Equal(testGrid) || v.Generation.Solver != "solver 1" {
 			t.Errorf("generation = %+v", v.Generation)
 		}
-		cs, err := v.Components(t.Context())
+		cs, err := v.Components(t.Context(), AllDetails)
 		if err != nil {
 			return err
 		}
@@ -132,14 +133,19 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		if samples, err := v.Samples(t.Context(), c.ID); err != nil || len(samples) != 100 {
 			t.Errorf("samples: %d, %v", len(samples), err)
 		}
-		wanted := map[SpectrumKey]bool{{cs[1].RecordID, RoleH2}: true}
-		return v.Spectra(t.Context(), 1, wanted, func(key SpectrumKey, sd []float64) error {
-			if !wanted[key] || sd[0] != 11 || sd[2] != 13 {
-				t.Errorf("%v: sd = %v", key, sd)
+		for _, periods := range []Span{{0, 3}, {1, 2}, {2, 3}, {0, 2}} {
+			var ids []int64
+			sd := make([]float64, periods.To-periods.From)
+			err = v.Spectra(t.Context(), RoleH2, 1, periods, func(id int64, text Ordinates) error {
+				ids = append(ids, id)
+				return text.Decode(sd)
+			})
+			want := []float64{11, 12, 13}[periods.From:periods.To]
+			if err != nil || !slices.Equal(ids, []int64{cs[1].RecordID}) || !slices.Equal(sd, want) {
+				t.Errorf("%v: records %v, sd = %v, want %v; %v", periods, ids, sd, want, err)
 			}
-			delete(wanted, key)
-			return nil
-		})
+		}
+		return nil
 	})
 	if err != nil {
 		t.Error(err)
@@ -192,17 +198,17 @@ func TestRolesChangePlaces(t *testing.T) {
 		return tx.SetRoles(ctx, r.ID, map[string]string{RoleH1: RoleH2, RoleH2: RoleH1})
 	})
 	err := s.View(t.Context(), func(v *Snapshot) error {
-		cs, err := v.Components(t.Context())
+		cs, err := v.Components(t.Context(), AllDetails)
 		if err != nil {
 			return err
 		}
 		if cs[0].Role != RoleH1 || cs[0].PGA != 2 || cs[0].Label != RoleH2 {
 			t.Errorf("first component = %+v", cs[0])
 		}
-		wanted := map[SpectrumKey]bool{{cs[0].RecordID, RoleH1}: true}
-		return v.Spectra(t.Context(), 0, wanted, func(_ SpectrumKey, sd []float64) error {
-			if sd[0] != 2 {
-				t.Errorf("sd = %v", sd)
+		return v.Spectra(t.Context(), RoleH1, 0, Span{0, 1}, func(_ int64, text Ordinates) error {
+			sd := []float64{0}
+			if err := text.Decode(sd); err != nil || sd[0] != 2 {
+				t.Errorf("sd = %v, %v", sd, err)
 			}
 			return nil
 		})
@@ -274,12 +280,12 @@ func TestRejectionsAreKeptAndForgotten(t *testing.T) {
 func TestViewIsOneState(t *testing.T) {
 	s, g := filledStore(t)
 	err := s.View(t.Context(), func(v *Snapshot) error {
-		before, err := v.Components(t.Context())
+		before, err := v.Components(t.Context(), AllDetails)
 		if err != nil {
 			return err
 		}
 		update(t, s, func(ctx context.Context, tx *Tx) error { return add(ctx, tx, g, "R1", RoleH1, 1) })
-		after, err := v.Components(t.Context())
+		after, err := v.Components(t.Context(), AllDetails)
 		if len(before) != len(after) {
 			t.Errorf("%d components, then %d in one snapshot", len(before), len(after))
 		}

@@ -166,9 +166,10 @@ func stored(t *testing.T, store *db.Store, role string) (out []float64) {
 	t.Helper()
 	err := store.View(t.Context(), func(v *db.Snapshot) error {
 		for d := range v.Generation.Grid.Dampings {
-			err := v.Spectra(t.Context(), d, map[db.SpectrumKey]bool{{RecordID: 1, Role: role}: true}, func(_ db.SpectrumKey, sd []float64) error {
-				out = append(out, sd...)
-				return nil
+			periods := len(v.Generation.Grid.PeriodsS)
+			err := v.Spectra(t.Context(), role, d, db.Span{To: periods}, func(_ int64, text db.Ordinates) error {
+				out = append(out, make([]float64, periods)...)
+				return text.Decode(out[len(out)-periods:])
 			})
 			if err != nil {
 				return err

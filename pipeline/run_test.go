@@ -98,26 +98,25 @@ func dump(t *testing.T, store *db.Store) []string {
 	t.Helper()
 	var out []string
 	err := store.View(t.Context(), func(v *db.Snapshot) error {
-		components, err := v.Components(t.Context())
+		components, err := v.Components(t.Context(), db.AllDetails)
 		if err != nil {
 			return err
 		}
 		code := map[int64]string{}
-		wanted := map[db.SpectrumKey]bool{}
 		for _, c := range components {
 			code[c.RecordID] = c.Record.Code
-			for _, role := range []string{c.Role, db.RoleRotD50, db.RoleRotD100} {
-				wanted[db.SpectrumKey{RecordID: c.RecordID, Role: role}] = true
-			}
 			out = append(out, fmt.Sprint(c.Record.Code, c.Role, c.Label, c.AzimuthDeg == nil, c.Record.Siting, filepath.Base(c.SourcePath), c.PGA, c.PGV, c.PGD))
 		}
 		for d := range v.Generation.Grid.Dampings {
-			err := v.Spectra(t.Context(), d, wanted, func(key db.SpectrumKey, sd []float64) error {
-				out = append(out, fmt.Sprint(d, code[key.RecordID], key.Role, sd))
-				return nil
-			})
-			if err != nil {
-				return err
+			for _, role := range []string{db.RoleH1, db.RoleH2, db.RoleV, db.RoleRotD50, db.RoleRotD100} {
+				whole := db.Span{To: len(v.Generation.Grid.PeriodsS)}
+				err := v.Spectra(t.Context(), role, d, whole, func(record int64, sd db.Ordinates) error {
+					out = append(out, fmt.Sprint(d, code[record], role, string(sd)))
+					return nil
+				})
+				if err != nil {
+					return err
+				}
 			}
 		}
 		return nil
@@ -235,7 +234,7 @@ func TestAStoppedRunIsFinishedByTheNext(t *testing.T) {
 func componentsOf(t *testing.T, store *db.Store) (out []db.HeldComponent) {
 	t.Helper()
 	err := store.View(t.Context(), func(v *db.Snapshot) (err error) {
-		out, err = v.Components(t.Context())
+		out, err = v.Components(t.Context(), db.AllDetails)
 		return err
 	})
 	if err != nil {

@@ -81,6 +81,16 @@ var texts = []string{
 	"siting", "instrument", "component", "format", "processing", "source",
 }
 
+// attributeDetails says what has to be read of components for an attribute;
+// those that are not named are there always.
+var attributeDetails = map[string]db.Details{
+	"distance_km": db.DetailRecord, "vs30_m_s": db.DetailRecord, "station_latitude": db.DetailRecord, "station_longitude": db.DetailRecord,
+	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "instrument": db.DetailRecord,
+	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
+	"low_cut_hz": db.DetailChannel, "high_cut_hz": db.DetailChannel,
+	"format": db.DetailChannel, "processing": db.DetailChannel, "source": db.DetailChannel,
+}
+
 // WhereAttributes lists every attribute that an expression may use, for people.
 func WhereAttributes() string {
 	names := make([]string, len(numbers))

@@ -104,7 +104,7 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 }
 
 func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*DemandAnswer, error) {
-	picked, err := pick(ctx, snapshot, q.Selection)
+	picked, err := pick(ctx, snapshot, q.Selection, 0)
 	if err != nil {
 		return nil, err
 	}

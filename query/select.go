@@ -25,9 +25,10 @@ type picked struct {
 	held    int
 }
 
-// pick carries out a selection whose defaults are filled in. The error is an
-// EmptyError where no motion is left, beside what was counted.
-func pick(ctx context.Context, snapshot *db.Snapshot, s Selection) (*picked, error) {
+// pick carries out a selection whose defaults are filled in. Of the components
+// it reads these details and what the expression uses. The error is an EmptyError
+// where no motion is left, beside what was counted.
+func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.Details) (*picked, error) {
 	condition, err := compileWhere(s.Where)
 	if err != nil {
 		return nil, err
@@ -36,7 +37,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection) (*picked, err
 	if err != nil {
 		return nil, err
 	}
-	held, err := snapshot.Components(ctx)
+	held, err := snapshot.Components(ctx, details|condition.details())
 	if err != nil {
 		return nil, err
 	}
@@ -103,16 +104,19 @@ func (p *picker) take(components []db.HeldComponent) error {
 
 // judge says whether a motion is taken, or why it is left out.
 func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err error) {
-	a := m.attributes()
-	unknown := p.condition.unknown(&a)
-	if unknown == "" {
-		if met, err = p.condition.met(&a); err != nil || !met {
-			return "", false, err
+	unknown := ""
+	if p.condition != nil {
+		a := m.attributes()
+		if unknown = p.condition.unknown(&a); unknown == "" {
+			if met, err = p.condition.met(&a); err != nil || !met {
+				return "", false, err
+			}
 		}
 	}
+	siting := m.members[0].Record.Siting
 	switch {
-	case !p.sitings[a.Siting]:
-		return "siting " + a.Siting, false, nil
+	case !p.sitings[siting]:
+		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
 	case unknown != "":

@@ -104,7 +104,7 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	if err != nil {
 		return nil, err
 	}
-	picked, err := pick(ctx, snapshot, q.Selection)
+	picked, err := pick(ctx, snapshot, q.Selection, 0)
 	if err != nil {
 		return nil, err
 	}

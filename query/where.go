@@ -10,6 +10,8 @@ import (
 	"github.com/expr-lang/expr/ast"
 	"github.com/expr-lang/expr/file"
 	"github.com/expr-lang/expr/vm"
+
+	"swaybook/db"
 )
 
 // What one expression may cost. An expression is asked of every record, so its
@@ -30,7 +32,7 @@ var whereFunctions = []string{
 }
 
 // where is a compiled expression. It is for one goroutine. The nil where takes
-// everything.
+// everything and uses nothing.
 type where struct {
 	program *vm.Program
 	machine vm.VM
@@ -101,9 +103,6 @@ var wordings = []struct {
 // unknown returns the name of the first attribute that the expression uses and
 // the motion lacks, or "".
 func (w *where) unknown(a *attributes) string {
-	if w == nil {
-		return ""
-	}
 	for _, i := range w.used {
 		if !numbers[i].known(a) {
 			return numbers[i].name
@@ -117,9 +116,6 @@ func (w *where) uses(name string) bool { return w != nil && w.names[name] }
 
 // met reports whether the motion meets the expression.
 func (w *where) met(a *attributes) (bool, error) {
-	if w == nil {
-		return true, nil
-	}
 	out, err := w.machine.Run(w.program, *a)
 	if err != nil {
 		return false, whereError(err)
@@ -129,6 +125,17 @@ func (w *where) met(a *attributes) (bool, error) {
 		return false, usage("where", "the expression gives %v, not true or false", out)
 	}
 	return yes, nil
+}
+
+// details are those of components that the expression uses.
+func (w *where) details() (d db.Details) {
+	if w == nil {
+		return 0
+	}
+	for name := range w.names {
+		d |= attributeDetails[name]
+	}
+	return d
 }
 
 // inspector notes which names an expression uses and refuses what could loop,

@@ -2,6 +2,7 @@ package query
 
 import (
 	"errors"
+	"fmt"
 	"math"
 	"reflect"
 	"strings"
@@ -13,7 +14,7 @@ import (
 func whereSample() attributes {
 	held := &db.HeldComponent{
 		Record: db.Record{Code: "R1", Siting: "free-field", Event: quakeA, Station: stationA, DistanceKM: ptr(12.5)},
-		PGA:    0.3 * StandardGravity, PGV: 0.2, PGD: 0.1,
+		Peaks:  db.Peaks{PGA: 0.3 * StandardGravity, PGV: 0.2, PGD: 0.1},
 	}
 	held.Role, held.StepS, held.Samples, held.LowCutHz = "h1", 0.01, 4001, ptr(0.1)
 	held.SourceFormat, held.SourcePath, held.Processing = "knet", "a/R1.EW", "corrected"
@@ -206,8 +207,8 @@ func TestAttributeTables(t *testing.T) {
 // TestPairAttributes: of what both components do not share, the less favourable
 // stands for the pair.
 func TestPairAttributes(t *testing.T) {
-	first := &db.HeldComponent{Record: db.Record{Code: "R", Siting: "ground"}, PGA: 0.1 * StandardGravity, PGV: 0.2, PGD: 0.02}
-	second := &db.HeldComponent{Record: first.Record, PGA: 0.4 * StandardGravity, PGV: 0.8, PGD: 0.08}
+	first := &db.HeldComponent{Record: db.Record{Code: "R", Siting: "ground"}, Peaks: db.Peaks{PGA: 0.1 * StandardGravity, PGV: 0.2, PGD: 0.02}}
+	second := &db.HeldComponent{Record: first.Record, Peaks: db.Peaks{PGA: 0.4 * StandardGravity, PGV: 0.8, PGD: 0.08}}
 	first.StepS, second.StepS = 0.01, 0.005
 	first.Samples, second.Samples = 1001, 1501
 	first.LowCutHz, second.LowCutHz = ptr(0.1), ptr(0.2)
@@ -271,4 +272,44 @@ func FuzzWhere(f *testing.F) {
 			t.Errorf("%q: %v", text, err)
 		}
 	})
+}
+
+// TestAttributeDetails: what is read for an attribute is enough for it, of a
+// component and of a pair.
+func TestAttributeDetails(t *testing.T) {
+	store := newStore(t, handGrid, handRecords())
+	fields := reflect.VisibleFields(reflect.TypeFor[attributes]())
+	err := store.View(t.Context(), func(s *db.Snapshot) error {
+		for _, field := range fields {
+			name := field.Tag.Get("expr")
+			w, err := compileWhere(name + " == " + name)
+			if err != nil {
+				return err
+			}
+			whole, err := s.Components(t.Context(), db.AllDetails)
+			if err != nil {
+				return err
+			}
+			read, err := s.Components(t.Context(), w.details())
+			if err != nil {
+				return err
+			}
+			for i := range whole[1:] {
+				for kind, of := range map[string]func(c []db.HeldComponent) attributes{
+					"component": func(c []db.HeldComponent) attributes { return componentAttributes(&c[i]) },
+					"pair":      func(c []db.HeldComponent) attributes { return pairAttributes(ComponentLarger, &c[i], &c[i+1]) },
+				} {
+					want := reflect.ValueOf(of(whole)).FieldByIndex(field.Index)
+					got := reflect.ValueOf(of(read)).FieldByIndex(field.Index)
+					if fmt.Sprint(got) != fmt.Sprint(want) {
+						t.Errorf("%s of a %s = %v, want %v", name, kind, got, want)
+					}
+				}
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
 }

@@ -102,7 +102,7 @@ func componentsIn(ctx context.Context, path string) (n int) {
 	}
 	defer store.Close()
 	_ = store.View(ctx, func(v *db.Snapshot) error {
-		components, err := v.Components(ctx)
+		components, err := v.Components(ctx, 0)
 		n = len(components)
 		return err
 	})

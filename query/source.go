@@ -1,0 +1,91 @@
+package query
+
+import (
+	"context"
+	"runtime"
+	"slices"
+
+	"golang.org/x/sync/errgroup"
+
+	"swaybook/db"
+	"swaybook/pipeline/spectrum"
+)
+
+// source is where ordinates of a damping come from: one snapshot of a store.
+type source struct {
+	snapshot *db.Snapshot
+	damping  float64
+	method   Method
+}
+
+// gridPosition returns the position of the damping in the grid, -1 where
+// spectra of it are not stored by this method.
+func (s *source) gridPosition() int {
+	if s.method != spectrum.NigamJennings {
+		return -1
+	}
+	return slices.Index(s.snapshot.Generation.Grid.Dampings, s.damping)
+}
+
+// load returns the SD of the motions at the periods: read from the store where
+// damping and period are on its grid, computed from the stored samples
+// otherwise.
+func (s *source) load(ctx context.Context, motions []motion, periodsS []float64) (*ordinates, error) {
+	o := newOrdinates(periodsS, len(motions))
+	var stored, missing []int // positions in periodsS
+	position := s.gridPosition()
+	columns := columnsOf(s.snapshot.Generation.Grid.PeriodsS, periodsS)
+	for i, column := range columns {
+		if position >= 0 && column >= 0 {
+			stored = append(stored, i)
+		} else {
+			missing = append(missing, i)
+		}
+	}
+	if len(stored) > 0 {
+		r := newReader(o, motions, stored, columns)
+		if err := r.readAll(ctx, s.snapshot, position); err != nil {
+			return nil, err
+		}
+	}
+	if len(missing) > 0 {
+		if err := s.compute(ctx, o, motions, missing); err != nil {
+			return nil, err
+		}
+	}
+	return o, nil
+}
+
+// columnsOf returns the position in grid of each period, -1 for one off it.
+func columnsOf(grid, periodsS []float64) []int {
+	at := make(map[float64]int, len(grid))
+	for i, p := range grid {
+		at[p] = i
+	}
+	out := make([]int, len(periodsS))
+	for i, p := range periodsS {
+		column, ok := at[p]
+		if !ok {
+			column = -1
+		}
+		out[i] = column
+	}
+	return out
+}
+
+// inParallel calls f for 0 … n-1 from as many goroutines as there are
+// processors and returns the first error, after all have ended.
+func inParallel(ctx context.Context, n int, f func(ctx context.Context, i int) error) error {
+	group, inner := errgroup.WithContext(ctx)
+	group.SetLimit(runtime.GOMAXPROCS(0))
+	for i := range n {
+		if inner.Err() != nil {
+			break
+		}
+		group.Go(func() error { return f(inner, i) })
+	}
+	if err := group.Wait(); err != nil {
+		return err
+	}
+	return ctx.Err()
+}
