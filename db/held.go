@@ -16,6 +16,7 @@ type componentQuery struct {
 // componentRow is a component as SQL gives it.
 type componentRow struct {
 	HeldComponent
+	record          Record
 	event, station  sql.NullInt64
 	start, warnings string
 }
@@ -23,10 +24,10 @@ type componentRow struct {
 // columns are what is read of a component, and where it goes.
 func (q *componentQuery) columns(v *componentRow) (names string, into []any) {
 	names = `c.id, c.record_id, c.role, c.azimuth_deg, c.step_s, c.samples, r.code, r.siting, r.event_id`
-	into = []any{&v.ID, &v.RecordID, &v.Role, &v.AzimuthDeg, &v.StepS, &v.Samples, &v.Record.Code, &v.Record.Siting, &v.event}
+	into = []any{&v.ID, &v.RecordID, &v.Role, &v.AzimuthDeg, &v.StepS, &v.Samples, &v.record.Code, &v.record.Siting, &v.event}
 	if q.details&DetailRecord != 0 {
 		names += `, r.station_id, r.instrument, coalesce(r.start_at, ''), r.distance_km`
-		into = append(into, &v.station, &v.Record.Instrument, &v.start, &v.Record.DistanceKM)
+		into = append(into, &v.station, &v.record.Instrument, &v.start, &v.record.DistanceKM)
 	}
 	if q.details&DetailPeaks != 0 {
 		names += `, pga.value, pgv.value, pgd.value`
@@ -57,22 +58,25 @@ func (q *componentQuery) text(generation int64) string {
 	return text
 }
 
-func (q *componentQuery) collect(rows *sql.Rows) ([]HeldComponent, error) {
+// collect reads about n rows. Components of one record share it.
+func (q *componentQuery) collect(rows *sql.Rows, n int) ([]HeldComponent, error) {
 	defer rows.Close()
 	var v componentRow
 	_, into := q.columns(&v)
-	var out []HeldComponent
+	out := make([]HeldComponent, 0, n)
+	var record *Record
 	for rows.Next() {
 		v = componentRow{}
 		if err := rows.Scan(into...); err != nil {
 			return nil, err
 		}
-		v.Record.Event = q.events[v.event.Int64]
-		v.Record.Station = q.stations[v.station.Int64]
-		var err error
-		if v.Record.Start, err = parseTime(v.start); err != nil {
-			return nil, err
+		if len(out) == 0 || out[len(out)-1].RecordID != v.RecordID {
+			var err error
+			if record, err = q.record(&v); err != nil {
+				return nil, err
+			}
 		}
+		v.Record = record
 		if v.warnings != "" {
 			if err := json.Unmarshal([]byte(v.warnings), &v.Warnings); err != nil {
 				return nil, err
@@ -81,4 +85,12 @@ func (q *componentQuery) collect(rows *sql.Rows) ([]HeldComponent, error) {
 		out = append(out, v.HeldComponent)
 	}
 	return out, rows.Err()
+}
+
+func (q *componentQuery) record(v *componentRow) (*Record, error) {
+	r := v.record
+	r.Event, r.Station = q.events[v.event.Int64], q.stations[v.station.Int64]
+	var err error
+	r.Start, err = parseTime(v.start)
+	return &r, err
 }

@@ -41,7 +41,7 @@ func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
 type HeldComponent struct {
 	ID       int64
 	RecordID int64
-	Record   Record
+	Record   *Record
 	Component
 	// Of the ground motion, where DetailPeaks was asked for.
 	Peaks
@@ -101,11 +101,15 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 			return nil, err
 		}
 	}
+	var n int
+	if err := s.tx.QueryRowContext(ctx, "SELECT count(*) FROM component c "+condition, args...).Scan(&n); err != nil {
+		return nil, fmt.Errorf("count components: %w", err)
+	}
 	rows, err := s.tx.QueryContext(ctx, q.text(s.Generation.ID)+condition+"ORDER BY r.code, c.role, c.id", args...)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
 	}
-	out, err := q.collect(rows)
+	out, err := q.collect(rows, n)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
 	}

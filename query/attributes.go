@@ -110,7 +110,7 @@ func componentAttributes(c *db.HeldComponent) attributes {
 		AzimuthDeg: orNaN(c.AzimuthDeg), LowCutHz: orNaN(c.LowCutHz), HighCutHz: orNaN(c.HighCutHz),
 		Component: c.Role, Format: c.SourceFormat, Processing: c.Processing, Source: c.SourcePath,
 	}
-	describeRecord(&a, &c.Record)
+	describeRecord(&a, c.Record)
 	return a
 }
 

@@ -43,6 +43,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, leftOut: map[string]int{}}
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
+	p.motions = make([]motion, 0, len(held))
 	for from := 0; from < len(held); {
 		to := from + 1
 		for to < len(held) && held[to].RecordID == held[from].RecordID {
@@ -97,7 +98,7 @@ func (p *picker) take(components []db.HeldComponent) error {
 	}
 	p.count(reasons)
 	if len(p.motions) > before {
-		p.note(&components[0].Record)
+		p.note(components[0].Record)
 	}
 	return nil
 }

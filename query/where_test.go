@@ -13,7 +13,7 @@ import (
 
 func whereSample() attributes {
 	held := &db.HeldComponent{
-		Record: db.Record{Code: "R1", Siting: "free-field", Event: quakeA, Station: stationA, DistanceKM: ptr(12.5)},
+		Record: &db.Record{Code: "R1", Siting: "free-field", Event: quakeA, Station: stationA, DistanceKM: ptr(12.5)},
 		Peaks:  db.Peaks{PGA: 0.3 * StandardGravity, PGV: 0.2, PGD: 0.1},
 	}
 	held.Role, held.StepS, held.Samples, held.LowCutHz = "h1", 0.01, 4001, ptr(0.1)
@@ -145,7 +145,7 @@ func TestWhereRuntimeMistake(t *testing.T) {
 // TestWhereUnknown: the first unknown number in the order of the list is named,
 // if the expression uses it, even where another part would decide.
 func TestWhereUnknown(t *testing.T) {
-	a := componentAttributes(&db.HeldComponent{Record: db.Record{Code: "R", Siting: "ground"}})
+	a := componentAttributes(&db.HeldComponent{Record: &db.Record{Code: "R", Siting: "ground"}})
 	for _, n := range numbers {
 		if n.name == "dt_s" || n.name == "samples" || n.name == "duration_s" || strings.HasPrefix(n.name, "pg") {
 			continue // every component has these
@@ -207,7 +207,7 @@ func TestAttributeTables(t *testing.T) {
 // TestPairAttributes: of what both components do not share, the less favourable
 // stands for the pair.
 func TestPairAttributes(t *testing.T) {
-	first := &db.HeldComponent{Record: db.Record{Code: "R", Siting: "ground"}, Peaks: db.Peaks{PGA: 0.1 * StandardGravity, PGV: 0.2, PGD: 0.02}}
+	first := &db.HeldComponent{Record: &db.Record{Code: "R", Siting: "ground"}, Peaks: db.Peaks{PGA: 0.1 * StandardGravity, PGV: 0.2, PGD: 0.02}}
 	second := &db.HeldComponent{Record: first.Record, Peaks: db.Peaks{PGA: 0.4 * StandardGravity, PGV: 0.8, PGD: 0.08}}
 	first.StepS, second.StepS = 0.01, 0.005
 	first.Samples, second.Samples = 1001, 1501
