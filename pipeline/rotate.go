@@ -86,11 +86,14 @@ func rotatePair(solvers *solvers, p db.Pair, first, second db.StoredMotion) (med
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}
-	a, b, changed, err := spectrum.Pair(a, b, betweenDeg(p))
+	a, b, changedA, changedB, err := spectrum.Pair(a, b, betweenDeg(p))
 	if err != nil {
 		return median, maximum, err
 	}
-	if changed {
+	if changedA {
+		sdA = solver.SD(nil, a)
+	}
+	if changedB {
 		sdB = solver.SD(nil, b)
 	}
 	sd50, sd100 := solver.RotD(a, b, sdA, sdB)

@@ -131,15 +131,11 @@ func compareRotated(t *testing.T, store *db.Store, first, second []float64, betw
 	if err != nil {
 		t.Fatal(err)
 	}
-	sdA, sdB := solver.SD(nil, first), solver.SD(nil, second)
-	a, b, changed, err := spectrum.Pair(first, second, between)
+	a, b, _, _, err := spectrum.Pair(first, second, between)
 	if err != nil {
 		t.Fatal(err)
 	}
-	if changed {
-		sdB = solver.SD(nil, b)
-	}
-	sd50, sd100 := solver.RotD(a, b, sdA, sdB)
+	sd50, sd100 := solver.RotD(a, b, solver.SD(nil, a), solver.SD(nil, b))
 	peaks50, peaks100 := spectrum.RotDPeaks(0.01, a, b)
 	for role, want := range map[string][]float64{db.RoleRotD50: sd50, db.RoleRotD100: sd100} {
 		if got := stored(t, store, role); !slices.Equal(got, want) {
