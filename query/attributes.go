@@ -148,14 +148,24 @@ func year(r *db.Record) int {
 }
 
 // pairAttributes describes a horizontal pair as one motion. Peaks are combined
-// as the ordinates are. Of what the components do not share, the less
-// favourable value stands for both: the longer step, the shorter duration, the
-// higher low cut and the lower high cut, unknown where one is. The azimuth is
-// unknown. Strings that differ are joined with " + ".
-func pairAttributes(component Component, first, second *db.HeldComponent) attributes {
-	a, b := componentAttributes(first), componentAttributes(second)
-	a.Component, a.AzimuthDeg = string(component), math.NaN()
-	a.PGA, a.PGV, a.PGD = combine(component, a.PGA, b.PGA), combine(component, a.PGV, b.PGV), combine(component, a.PGD, b.PGD)
+// as the ordinates are; those of a rotated pair are its own, unknown where nobody
+// asked for them. Of what the components do not share, the less favourable value
+// stands for both: the longer step, the shorter duration, the higher low cut and
+// the lower high cut, unknown where one is. The azimuth is unknown. Strings that
+// differ are joined with " + ".
+func pairAttributes(m *motion) attributes {
+	component := Component(m.role)
+	a, b := componentAttributes(m.members[0]), componentAttributes(m.members[1])
+	a.Component, a.AzimuthDeg = m.role, math.NaN()
+	switch {
+	case m.rotated != nil:
+		a.PGA, a.PGV, a.PGD = m.rotated.PGA/StandardGravity, m.rotated.PGV, m.rotated.PGD
+	case component.IsRotated():
+		a.PGA, a.PGV, a.PGD = math.NaN(), math.NaN(), math.NaN()
+	default:
+		combine := combiner(component)
+		a.PGA, a.PGV, a.PGD = combine(a.PGA, b.PGA), combine(a.PGV, b.PGV), combine(a.PGD, b.PGD)
+	}
 	// The builtins give NaN where either is NaN.
 	a.StepS, a.Samples, a.DurationS = max(a.StepS, b.StepS), min(a.Samples, b.Samples), min(a.DurationS, b.DurationS)
 	a.LowCutHz, a.HighCutHz = max(a.LowCutHz, b.LowCutHz), min(a.HighCutHz, b.HighCutHz)
@@ -163,13 +173,13 @@ func pairAttributes(component Component, first, second *db.HeldComponent) attrib
 	return a
 }
 
-// combine is the ordinate of a pair. It is symmetric, so the order in which
-// components arrive is immaterial.
-func combine(component Component, a, b float64) float64 {
+// combiner gives the ordinate of a pair from those of its components. It is
+// symmetric, so the order in which components arrive is immaterial.
+func combiner(component Component) func(a, b float64) float64 {
 	if component == ComponentLarger {
-		return max(a, b)
+		return func(a, b float64) float64 { return max(a, b) }
 	}
-	return stats.GeometricMean(a, b)
+	return stats.GeometricMean
 }
 
 func both(a, b string) string {

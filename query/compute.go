@@ -9,24 +9,26 @@ import (
 	"swaybook/pipeline/spectrum"
 )
 
-// compute fills in the missing periods of o from samples. A motion is the unit
-// of work; the samples of at most GOMAXPROCS components are in memory. The
-// snapshot is one connection, whose calls database/sql carries out one at a
-// time; decompression and solving run side by side.
-func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, missing []int) error {
+// compute fills in some periods of some motions of o from samples, both given by
+// position. A motion is the unit of work; the samples of at most GOMAXPROCS
+// motions are in memory. The snapshot is one connection, whose calls database/sql
+// carries out one at a time; decompression and solving run side by side.
+func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, which, missing []int) error {
+	if len(missing) == 0 {
+		return nil
+	}
 	oscillators := make([]spectrum.Oscillator, len(missing))
 	for i, p := range missing {
 		oscillators[i] = spectrum.Oscillator{PeriodS: o.periodsS[p], Damping: s.damping}
 	}
 	solvers := &solvers{method: s.method, oscillators: oscillators}
-	return inParallel(ctx, len(motions), func(ctx context.Context, i int) error {
-		m := &motions[i]
-		for k, c := range m.members {
-			sd, err := solvers.solve(ctx, s.snapshot, c)
-			if err != nil {
-				return err
-			}
-			o.put(i, m, k == 0, missing, sd)
+	return inParallel(ctx, len(which), func(ctx context.Context, k int) error {
+		m := &motions[which[k]]
+		err := solvers.solve(ctx, s.snapshot, m, func(sd []float64, isFirst bool) {
+			o.put(which[k], m, isFirst, missing, sd)
+		})
+		if err != nil {
+			return fmt.Errorf("compute spectrum of %s %s: %w", m.record(), m.role, err)
 		}
 		return nil
 	})
@@ -56,15 +58,27 @@ func (s *solvers) get(stepS float64) (*spectrum.Solver, error) {
 	return build()
 }
 
-// solve returns the SD of a component, one an oscillator.
-func (s *solvers) solve(ctx context.Context, snapshot *db.Snapshot, c *db.HeldComponent) ([]float64, error) {
-	solver, err := s.get(c.StepS)
-	if err != nil {
-		return nil, fmt.Errorf("compute spectrum of %s %s: %w", c.Record.Code, c.Role, err)
+// solve hands over the SD, one an oscillator, of what the motion is made of: of
+// each component, or of the rotated pair at once.
+func (s *solvers) solve(ctx context.Context, snapshot *db.Snapshot, m *motion, put func(sd []float64, isFirst bool)) error {
+	for k, c := range m.members {
+		solver, err := s.get(c.StepS)
+		if err != nil {
+			return err
+		}
+		if m.isRotated() {
+			sd, err := m.rotatedSD(ctx, snapshot, solver)
+			if err != nil {
+				return err
+			}
+			put(sd, true)
+			return nil
+		}
+		samples, err := snapshot.Samples(ctx, c.ID)
+		if err != nil {
+			return err
+		}
+		put(solver.SD(nil, samples), k == 0)
 	}
-	samples, err := snapshot.Samples(ctx, c.ID)
-	if err != nil {
-		return nil, fmt.Errorf("compute spectrum of %s %s: %w", c.Record.Code, c.Role, err)
-	}
-	return solver.SD(nil, samples), nil
+	return nil
 }

@@ -10,7 +10,7 @@ import (
 
 // DemandQuestion asks what the motions of a selection demand of a structure.
 type DemandQuestion struct {
-	Selection             // component: ComponentGeomean, siting: SitingGround by default
+	Selection             // component: ComponentRotD50, siting: SitingGround by default
 	Structure   Structure // see ParseStructure
 	BandWidth   float64   // ratio: the envelope over T·(1±BandWidth) too; 0: none
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
@@ -90,7 +90,7 @@ func (q DemandQuestion) Ask(ctx context.Context, store *db.Store) (*DemandAnswer
 
 func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 	var err error
-	q.Selection, err = q.Selection.withDefaults(ComponentGeomean, SitingGround, statisticsComponents)
+	q.Selection, err = q.Selection.withDefaults(ComponentRotD50, SitingGround, statisticsComponents)
 	if err != nil {
 		return q, err
 	}

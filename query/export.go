@@ -11,8 +11,8 @@ import (
 	"swaybook/db"
 )
 
-// ExportQuestion asks for the ordinates of stored components, one row an
-// ordinate.
+// ExportQuestion asks for the ordinates of stored components and of what is
+// stored of pairs over all directions, one row an ordinate.
 type ExportQuestion struct {
 	Selection           // component: ComponentAll, siting: SitingAll by default
 	Dampings  []float64 // ratios; nil: those of the grid. Others are computed from samples.

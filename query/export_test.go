@@ -26,6 +26,15 @@ func export(t *testing.T, store *db.Store, q ExportQuestion) (string, *ExportSum
 	return b.String(), summary
 }
 
+func csvRows(t *testing.T, text string) [][]string {
+	t.Helper()
+	rows, err := csv.NewReader(strings.NewReader(text)).ReadAll()
+	if err != nil {
+		t.Fatal(err)
+	}
+	return rows
+}
+
 // TestExportEqualsView: the export is the store's view in another coat: the
 // same rows in the same order. The numbers agree to the last digit but one:
 // where the compiler fuses multiplication and addition (arm64, GOAMD64=v3), the
@@ -68,9 +77,10 @@ func TestExportEqualsView(t *testing.T) {
 	if err := rows.Err(); err != nil {
 		t.Fatal(err)
 	}
-	// Eleven components, two dampings, four periods.
-	if n != 11*2*4 || summary.Rows != n || len(got) != n+1 {
-		t.Errorf("%d rows in the view, %d exported, want 88", n, summary.Rows)
+	// Eleven components and two rotated spectra of four pairs, two dampings, four
+	// periods.
+	if n != (11+2*4)*2*4 || summary.Rows != n || len(got) != n+1 {
+		t.Errorf("%d rows in the view, %d exported, want 152", n, summary.Rows)
 	}
 }
 
@@ -111,12 +121,14 @@ func TestExportFilters(t *testing.T) {
 		rows     int
 		all      string // in every row
 	}{
-		{"siting", ExportQuestion{Selection: Selection{Siting: "structure"}}, 2 * 2 * 4, "R5,"},
+		{"siting", ExportQuestion{Selection: Selection{Siting: "structure"}}, 4 * 2 * 4, "R5,"},
 		{"vertical", ExportQuestion{Selection: Selection{Component: ComponentV}}, 2 * 2 * 4, ",v,"},
 		{"each", ExportQuestion{Selection: Selection{Component: ComponentEach}}, 9 * 2 * 4, ",h"},
-		{"where", ExportQuestion{Selection: Selection{Where: `record == "R1"`}}, 3 * 2 * 4, "R1,"},
-		{"damping", ExportQuestion{Dampings: []float64{0.05}}, 11 * 4, ",0.05,"},
-		{"band", ExportQuestion{Band: Band{ToS: 2}}, 11 * 2, ",1.5707963267948966,"},
+		{"where", ExportQuestion{Selection: Selection{Where: `record == "R1"`}}, 5 * 2 * 4, "R1,"},
+		{"recorded", ExportQuestion{Selection: Selection{Component: ComponentRecorded, Where: `record == "R1"`}}, 3 * 2 * 4, "R1,"},
+		{"rotated", ExportQuestion{Selection: Selection{Component: ComponentRotD100}}, 4 * 2 * 4, ",rotd100,"},
+		{"damping", ExportQuestion{Dampings: []float64{0.05}}, 19 * 4, ",0.05,"},
+		{"band", ExportQuestion{Band: Band{ToS: 2}}, 19 * 2, ",1.5707963267948966,"},
 	}
 	for _, c := range cases {
 		text, summary := export(t, store, c.question)
@@ -137,10 +149,7 @@ func TestExportOffGrid(t *testing.T) {
 	record := inventedRecord{code: "A", siting: "structure", components: pair(1, 2)[:1]}
 	store := newStore(t, handGrid, []inventedRecord{record})
 	text, _ := export(t, store, ExportQuestion{Dampings: []float64{0.05, 0.03}})
-	rows, err := csv.NewReader(strings.NewReader(text)).ReadAll()
-	if err != nil {
-		t.Fatal(err)
-	}
+	rows := csvRows(t, text)
 	c := record.components[0]
 	for p, period := range handGrid.PeriodsS {
 		solver, err := spectrum.NewSolver(spectrum.NigamJennings, c.step(), []spectrum.Oscillator{{PeriodS: period, Damping: 0.03}})
@@ -166,10 +175,7 @@ func TestExportCells(t *testing.T) {
 		{code: `=1+2`, siting: "ground", components: pair(1, 2)[:1]}, {code: "a,\"b\"\nc", siting: "ground", components: pair(1, 2)[:1]},
 	})
 	text, _ := export(t, store, ExportQuestion{Band: Band{ToS: 2}, Dampings: []float64{0.02}})
-	rows, err := csv.NewReader(strings.NewReader(text)).ReadAll()
-	if err != nil {
-		t.Fatal(err)
-	}
+	rows := csvRows(t, text)
 	if rows[1][0] != "'=1+2" || rows[2][0] != "a,\"b\"\nc" {
 		t.Errorf("cells %q, %q", rows[1][0], rows[2][0])
 	}
@@ -189,7 +195,7 @@ func TestExportMistakes(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
 	var b bytes.Buffer
 	_, err := ExportQuestion{Selection: Selection{Component: ComponentGeomean}}.Write(t.Context(), store, &b)
-	checkUsage(t, "component", err, `component: unknown component "geomean"; accepted here: all, each, h1, h2, v`)
+	checkUsage(t, "component", err, `component: unknown component "geomean"; accepted here: all, recorded, each, h1, h2, v, rotd50, rotd100`)
 	_, err = ExportQuestion{Dampings: []float64{1}}.Write(t.Context(), store, &b)
 	checkUsage(t, "damping", err, "damping: 1 is 100% of critical; it must be at least 0 and less than 1, written 5% or 0.05")
 	_, err = ExportQuestion{Selection: Selection{Where: "magnitude > 9"}}.Write(t.Context(), store, &b)

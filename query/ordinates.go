@@ -64,15 +64,15 @@ func (m Measure) of(sd, omega float64) float64 {
 // put takes in the SD of one member of motion i at some of the periods, sd[k]
 // at the period of position positions[k]. The members come one after another.
 func (o *ordinates) put(i int, m *motion, isFirst bool, positions []int, sd []float64) {
-	switch {
-	case isFirst:
+	if isFirst {
 		for k, p := range positions {
 			o.sd[p*o.motions+i] = sd[k]
 		}
-	default:
-		for k, p := range positions {
-			into := &o.sd[p*o.motions+i]
-			*into = combine(Component(m.role), *into, sd[k])
-		}
+		return
+	}
+	combine := combiner(Component(m.role))
+	for k, p := range positions {
+		into := &o.sd[p*o.motions+i]
+		*into = combine(*into, sd[k])
 	}
 }

@@ -171,13 +171,16 @@ func TestBands(t *testing.T) {
 
 func TestWords(t *testing.T) {
 	c, err := ParseComponent("")
-	if err != nil || c != ComponentGeomean {
+	if err != nil || c != ComponentRotD50 {
 		t.Errorf("ParseComponent of nothing = %v, %v", c, err)
 	}
 	_, err = ParseComponent("all")
-	checkUsage(t, "component", err, `component: unknown component "all"; accepted here: each, h1, h2, v, geomean, larger`)
+	checkUsage(t, "component", err, `component: unknown component "all"; accepted here: rotd50, rotd100, geomean, larger, each, h1, h2, v`)
 	_, err = ParseStoredComponent("geomean")
-	checkUsage(t, "component", err, `component: unknown component "geomean"; accepted here: all, each, h1, h2, v`)
+	checkUsage(t, "component", err, `component: unknown component "geomean"; accepted here: all, recorded, each, h1, h2, v, rotd50, rotd100`)
+	if c, err := ParseStoredComponent(""); err != nil || c != "" {
+		t.Errorf("ParseStoredComponent of nothing = %q, %v", c, err)
+	}
 	s, err := ParseSiting(" structure , borehole")
 	if err != nil || s != "structure,borehole" {
 		t.Errorf("ParseSiting = %q, %v", s, err)

@@ -58,19 +58,21 @@ func newReader(o *ordinates, motions []motion, stored, columns []int) *reader {
 	return r
 }
 
-// readAll reads role by role, since that is how spectra lie in the store.
-func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position int) error {
+// readAll reads role by role, since that is how spectra lie in the store. It
+// returns the rotated motions whose spectrum is not stored.
+func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position int) (lacking []int, err error) {
 	parts := r.partsByRole()
 	for _, role := range slices.Sorted(maps.Keys(parts)) {
 		found, err := r.readRole(ctx, snapshot, position, role, parts[role])
 		if err != nil {
-			return err
+			return nil, err
 		}
-		if len(found) > 0 {
-			return fmt.Errorf("read spectra: the store lacks the spectrum of record %s %s", r.motions[found[0]].record(), role)
+		if len(found) > 0 && !Component(role).IsRotated() {
+			return nil, fmt.Errorf("read spectra: the store lacks the spectrum of record %s %s", r.motions[found[0]].record(), role)
 		}
+		lacking = append(lacking, found...)
 	}
-	return nil
+	return lacking, nil
 }
 
 // partsByRole lists what is wanted of each role, in the order of the records'
@@ -78,7 +80,12 @@ func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position in
 func (r *reader) partsByRole() map[string][]part {
 	out := map[string][]part{}
 	for i := range r.motions {
-		for k, c := range r.motions[i].members {
+		m := &r.motions[i]
+		if m.isRotated() {
+			out[m.role] = append(out[m.role], part{recordID: m.members[0].RecordID, motion: i, isFirst: true})
+			continue
+		}
+		for k, c := range m.members {
 			out[c.Role] = append(out[c.Role], part{recordID: c.RecordID, motion: i, isFirst: k == 0})
 		}
 	}

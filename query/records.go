@@ -2,18 +2,19 @@ package query
 
 import (
 	"context"
+	"slices"
 	"time"
 
 	"swaybook/db"
 )
 
-// RecordsQuestion asks which components a store holds. The defaults take all of
-// them.
+// RecordsQuestion asks which components a store holds.
 type RecordsQuestion struct {
-	Selection
+	Selection // component: ComponentRecorded, siting: SitingAll by default
 }
 
-// RecordRow describes one held component. Nil fields are unknown.
+// RecordRow describes one held component, or a pair over all directions. Nil
+// fields are unknown.
 type RecordRow struct {
 	Record           string   `json:"record"`
 	Event            *string  `json:"event"`
@@ -64,7 +65,7 @@ type RecordsAnswer struct {
 // selected the error is an EmptyError, and the answer an empty list that can be
 // written all the same.
 func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnswer, error) {
-	selection, err := q.Selection.withDefaults(ComponentAll, SitingAll, storedComponents)
+	selection, err := q.Selection.withDefaults(ComponentRecorded, SitingAll, storedComponents)
 	if err != nil {
 		return nil, err
 	}
@@ -76,11 +77,45 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 		}
 		answer.Selection = picked.report
 		for i := range picked.motions {
-			answer.Rows = append(answer.Rows, recordRow(picked.motions[i].members[0]))
+			answer.Rows = append(answer.Rows, rowOf(&picked.motions[i]))
 		}
 		return err
 	})
 	return answer, err
+}
+
+func rowOf(m *motion) RecordRow {
+	row := recordRow(m.members[0])
+	if m.isRotated() {
+		row.takePair(m)
+	}
+	return row
+}
+
+// takePair makes the row of a pair's first component that of the pair: numbers
+// as an expression sees them, and texts of both.
+func (r *RecordRow) takePair(m *motion) {
+	second := recordRow(m.members[1])
+	a := m.attributes()
+	r.Component, r.AzimuthDeg, r.Line = a.Component, nil, nil
+	r.StepS, r.Samples, r.DurationS = a.StepS, a.Samples, a.DurationS
+	r.PGA, r.PGV, r.PGD = a.PGA, a.PGV, a.PGD
+	r.LowCutHz, r.HighCutHz = knownOrNull(a.LowCutHz), knownOrNull(a.HighCutHz)
+	r.Channel, r.Unit = orNull(both(orEmpty(r.Channel), orEmpty(second.Channel))), orNull(both(orEmpty(r.Unit), orEmpty(second.Unit)))
+	r.Processing, r.Format, r.Source = orNull(a.Processing), a.Format, a.Source
+	r.SHA256 = both(r.SHA256, second.SHA256)
+	for _, w := range second.Warnings {
+		if !slices.Contains(r.Warnings, w) {
+			r.Warnings = append(r.Warnings, w)
+		}
+	}
+}
+
+func knownOrNull(x float64) *float64 {
+	if !isKnown(x) {
+		return nil
+	}
+	return &x
 }
 
 func recordRow(c *db.HeldComponent) RecordRow {

@@ -129,7 +129,7 @@ func TestSpectrumJSONKeys(t *testing.T) {
 	if err := decoder.Decode(&got); err != nil {
 		t.Fatal(err)
 	}
-	if got.Selection.Component != "geomean" || got.Selection.Siting != "ground" || got.Selection.Where != "true" ||
+	if got.Selection.Component != "rotd50" || got.Selection.Siting != "ground" || got.Selection.Where != "true" ||
 		got.Selection.Records != 3 || got.Selection.Spectra != 3 || got.Selection.Events != 2 || len(got.Selection.LeftOut) != 3 {
 		t.Errorf("selection %+v", got.Selection)
 	}

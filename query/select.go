@@ -3,7 +3,9 @@ package query
 import (
 	"context"
 	"fmt"
+	"iter"
 	"slices"
+	"strings"
 
 	"swaybook/db"
 )
@@ -11,7 +13,8 @@ import (
 // motion is what statistics count as one: a component, or a horizontal pair.
 type motion struct {
 	members []*db.HeldComponent // one or two, of one record
-	role    string              // the component's role, "geomean" or "larger"
+	role    string              // the component's role, or the pair's Component
+	rotated *db.Peaks           // of a rotated pair, nil where nobody asked
 }
 
 func (m *motion) record() string { return m.members[0].Record.Code }
@@ -37,24 +40,39 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
-	held, err := snapshot.Components(ctx, details|condition.details())
+	details |= condition.details()
+	held, err := snapshot.Components(ctx, details)
 	if err != nil {
 		return nil, err
 	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, leftOut: map[string]int{}}
+	if p.rotated, err = rotatedOf(ctx, snapshot, s.Component, details, held); err != nil {
+		return nil, err
+	}
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
-	for from := 0; from < len(held); {
-		to := from + 1
-		for to < len(held) && held[to].RecordID == held[from].RecordID {
-			to++
-		}
-		if err := p.take(held[from:to]); err != nil {
+	for components := range byRecord(held) {
+		if err := p.take(components); err != nil {
 			return nil, err
 		}
-		from = to
 	}
 	return p.finish()
+}
+
+// byRecord yields the components of one record after another.
+func byRecord(held []db.HeldComponent) iter.Seq[[]db.HeldComponent] {
+	return func(yield func([]db.HeldComponent) bool) {
+		for from := 0; from < len(held); {
+			to := from + 1
+			for to < len(held) && held[to].RecordID == held[from].RecordID {
+				to++
+			}
+			if !yield(held[from:to]) {
+				return
+			}
+			from = to
+		}
+	}
 }
 
 // picker sorts records into taken, unmet and left out.
@@ -67,6 +85,9 @@ type picker struct {
 	reasons   []string        // in order of first use
 	events    map[string]bool // codes
 	unknown   int             // records of unknown siting that are taken
+	assumed   int             // records taken whose horizontals are assumed at a right angle
+	// rotated has peaks of rotated pairs by role and the record's id.
+	rotated map[string]map[int64]db.Peaks
 }
 
 // take looks at the components of one record. A record counts once as unmet if
@@ -75,7 +96,7 @@ type picker struct {
 // count only what the question is about.
 func (p *picker) take(components []db.HeldComponent) error {
 	p.held++
-	candidates, lacking := candidatesOf(p.selection.Component, components)
+	candidates, lacking := p.candidatesOf(components)
 	before, unmet := len(p.motions), len(candidates) > 0
 	var reasons []string
 	for _, m := range candidates {
@@ -98,7 +119,7 @@ func (p *picker) take(components []db.HeldComponent) error {
 	}
 	p.count(reasons)
 	if len(p.motions) > before {
-		p.note(components[0].Record)
+		p.note(p.motions[before:])
 	}
 	return nil
 }
@@ -135,9 +156,13 @@ func (p *picker) count(reasons []string) {
 	}
 }
 
-// note counts a record that contributes.
-func (p *picker) note(r *db.Record) {
+// note counts a record that contributes these motions.
+func (p *picker) note(motions []motion) {
 	p.report.Records++
+	if slices.ContainsFunc(motions, func(m motion) bool { return m.isAssumed() }) {
+		p.assumed++
+	}
+	r := motions[0].members[0].Record
 	if r.Siting == "unknown" {
 		p.unknown++
 	}
@@ -159,6 +184,9 @@ func (p *picker) finish() (*picked, error) {
 	if p.unknown > 0 && p.selection.Siting != "unknown" {
 		p.report.Notes = append(p.report.Notes, countOf(p.unknown, "record", "records")+" of unknown siting among them")
 	}
+	if p.assumed > 0 {
+		p.report.Notes = append(p.report.Notes, countOf(p.assumed, "record", "records")+" of unknown azimuth among them, the horizontals taken at a right angle")
+	}
 	if len(p.motions) == 0 {
 		return &p.picked, &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: p.report.LeftOut, Hint: p.hint()}
 	}
@@ -177,7 +205,7 @@ func (p *picker) hint() string {
 // attributes are those of the component, or of the pair.
 func (m *motion) attributes() attributes {
 	if len(m.members) == 2 {
-		return pairAttributes(Component(m.role), m.members[0], m.members[1])
+		return pairAttributes(m)
 	}
 	a := componentAttributes(m.members[0])
 	a.Component = m.role
@@ -187,7 +215,8 @@ func (m *motion) attributes() attributes {
 // candidatesOf returns the motions that a record's components, in order of
 // role, make. Where they cannot make the asked one, lacking says why and the
 // candidate is a stand-in of which the expression can be asked.
-func candidatesOf(c Component, components []db.HeldComponent) (candidates []motion, lacking string) {
+func (p *picker) candidatesOf(components []db.HeldComponent) (candidates []motion, lacking string) {
+	c := p.selection.Component
 	var horizontal []*db.HeldComponent
 	for i := range components {
 		held := &components[i]
@@ -195,14 +224,16 @@ func candidatesOf(c Component, components []db.HeldComponent) (candidates []moti
 		if isHorizontal {
 			horizontal = append(horizontal, held)
 		}
-		if c == ComponentAll || c == ComponentEach && isHorizontal || string(c) == held.Role {
+		if c == ComponentAll || c == ComponentRecorded || c == ComponentEach && isHorizontal || string(c) == held.Role {
 			candidates = append(candidates, motion{members: []*db.HeldComponent{held}, role: held.Role})
 		}
 	}
-	if c.IsPair() {
-		return pairOf(c, horizontal, components)
-	}
-	if len(candidates) > 0 {
+	switch {
+	case c.IsPair():
+		return p.pairOf(horizontal, components)
+	case c == ComponentAll:
+		return p.withRotated(candidates, horizontal), ""
+	case len(candidates) > 0:
 		return candidates, ""
 	}
 	standIn := []motion{{members: []*db.HeldComponent{&components[0]}, role: string(c)}}
@@ -212,14 +243,37 @@ func candidatesOf(c Component, components []db.HeldComponent) (candidates []moti
 	return standIn, "no " + string(c) + " component"
 }
 
-func pairOf(c Component, horizontal []*db.HeldComponent, components []db.HeldComponent) (candidates []motion, lacking string) {
+func (p *picker) pairOf(horizontal []*db.HeldComponent, components []db.HeldComponent) (candidates []motion, lacking string) {
+	c := p.selection.Component
 	switch len(horizontal) {
 	case 2:
+		if c.IsRotated() {
+			lacking = notRotatable(horizontal[0], horizontal[1])
+		}
 	case 1:
 		lacking = "one horizontal component only"
 	default:
 		horizontal = []*db.HeldComponent{&components[0]}
 		lacking = "no horizontal component"
 	}
-	return []motion{{members: horizontal, role: string(c)}}, lacking
+	m := motion{members: horizontal, role: string(c)}
+	if peaks, ok := p.rotated[m.role][components[0].RecordID]; ok {
+		m.rotated = &peaks
+	}
+	return []motion{m}, lacking
+}
+
+// withRotated adds what is stored of the pair over all directions, in the order
+// of roles.
+func (p *picker) withRotated(candidates []motion, horizontal []*db.HeldComponent) []motion {
+	if len(horizontal) < 2 {
+		return candidates
+	}
+	for role, stored := range p.rotated {
+		if peaks, ok := stored[horizontal[0].RecordID]; ok {
+			candidates = append(candidates, motion{members: horizontal, role: role, rotated: &peaks})
+		}
+	}
+	slices.SortFunc(candidates, func(a, b motion) int { return strings.Compare(a.role, b.role) })
+	return candidates
 }

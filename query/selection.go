@@ -3,43 +3,50 @@ package query
 import (
 	"slices"
 	"strings"
+
+	"swaybook/db"
 )
 
 // Component names what one motion of a selection is made of.
 type Component string
 
-// Each horizontal component on its own, one role only, or a horizontal pair
-// combined at every period: by the geometric mean of both ordinates or by the
-// larger one. All takes every stored component; statistics do not accept it.
+// Each horizontal component on its own, one role only, or a horizontal pair as
+// one: the median or the maximum over all directions, or at every period the
+// geometric mean of both ordinates or the larger one. Recorded takes every stored
+// component, all takes what is stored of the pairs over all directions too;
+// statistics accept neither.
 const (
-	ComponentEach    Component = "each"
-	ComponentH1      Component = "h1"
-	ComponentH2      Component = "h2"
-	ComponentV       Component = "v"
-	ComponentGeomean Component = "geomean"
-	ComponentLarger  Component = "larger"
-	ComponentAll     Component = "all"
+	ComponentEach     Component = "each"
+	ComponentH1       Component = "h1"
+	ComponentH2       Component = "h2"
+	ComponentV        Component = "v"
+	ComponentRotD50   Component = db.RoleRotD50
+	ComponentRotD100  Component = db.RoleRotD100
+	ComponentGeomean  Component = "geomean"
+	ComponentLarger   Component = "larger"
+	ComponentRecorded Component = "recorded"
+	ComponentAll      Component = "all"
 )
 
 var (
-	statisticsComponents = []Component{ComponentEach, ComponentH1, ComponentH2, ComponentV, ComponentGeomean, ComponentLarger}
-	storedComponents     = []Component{ComponentAll, ComponentEach, ComponentH1, ComponentH2, ComponentV}
+	statisticsComponents = []Component{ComponentRotD50, ComponentRotD100, ComponentGeomean, ComponentLarger, ComponentEach, ComponentH1, ComponentH2, ComponentV}
+	storedComponents     = []Component{ComponentAll, ComponentRecorded, ComponentEach, ComponentH1, ComponentH2, ComponentV, ComponentRotD50, ComponentRotD100}
 )
 
 // ParseComponent reads a component for statistics. The empty text gives
-// ComponentGeomean.
+// ComponentRotD50.
 func ParseComponent(text string) (Component, error) {
 	if text == "" {
-		return ComponentGeomean, nil
+		return ComponentRotD50, nil
 	}
 	return Component(text), checkComponent(Component(text), statisticsComponents)
 }
 
-// ParseStoredComponent reads a component for lists and export, which hold
-// stored components only. The empty text gives ComponentAll.
+// ParseStoredComponent reads a component for lists and export. The empty text
+// gives "", which stands for the question's default.
 func ParseStoredComponent(text string) (Component, error) {
 	if text == "" {
-		return ComponentAll, nil
+		return "", nil
 	}
 	return Component(text), checkComponent(Component(text), storedComponents)
 }
@@ -52,7 +59,12 @@ func checkComponent(c Component, accepted []Component) error {
 }
 
 // IsPair reports whether two horizontal components make one motion.
-func (c Component) IsPair() bool { return c == ComponentGeomean || c == ComponentLarger }
+func (c Component) IsPair() bool {
+	return c == ComponentGeomean || c == ComponentLarger || c.IsRotated()
+}
+
+// IsRotated reports whether a motion is a horizontal pair over all directions.
+func (c Component) IsRotated() bool { return c == ComponentRotD50 || c == ComponentRotD100 }
 
 // Siting says which sitings of instruments a selection takes: "all", or a list
 // separated by commas of free-field, ground, structure, borehole and unknown.
@@ -141,7 +153,9 @@ func joinWords[T ~string](words []T) string {
 // which the expression uses is left out and counted, even where another part of
 // the expression would decide; an unknown string is "". Attributes are the
 // component's own, those of a pair are combined: peaks as the ordinates are, of
-// all else the less favourable, and the azimuth of a pair is unknown.
+// all else the less favourable, and the azimuth of a pair is unknown. The peaks of
+// a pair over all directions are those of the motion itself, taken direction by
+// direction: stored, or computed from the samples where they are not.
 type Selection struct {
 	Where     string // "" takes all
 	Component Component

@@ -29,7 +29,7 @@ func (s *source) gridPosition() int {
 
 // load returns the SD of the motions at the periods: read from the store where
 // damping and period are on its grid, computed from the stored samples
-// otherwise.
+// otherwise, and where the store lacks the spectrum of a rotated pair.
 func (s *source) load(ctx context.Context, motions []motion, periodsS []float64) (*ordinates, error) {
 	o := newOrdinates(periodsS, len(motions))
 	var stored, missing []int // positions in periodsS
@@ -44,16 +44,24 @@ func (s *source) load(ctx context.Context, motions []motion, periodsS []float64)
 	}
 	if len(stored) > 0 {
 		r := newReader(o, motions, stored, columns)
-		if err := r.readAll(ctx, s.snapshot, position); err != nil {
+		lacking, err := r.readAll(ctx, s.snapshot, position)
+		if err != nil {
+			return nil, err
+		}
+		if err := s.compute(ctx, o, motions, lacking, stored); err != nil {
 			return nil, err
 		}
 	}
-	if len(missing) > 0 {
-		if err := s.compute(ctx, o, motions, missing); err != nil {
-			return nil, err
-		}
+	return o, s.compute(ctx, o, motions, upTo(len(motions)), missing)
+}
+
+// upTo returns 0 … n-1.
+func upTo(n int) []int {
+	out := make([]int, n)
+	for i := range out {
+		out[i] = i
 	}
-	return o, nil
+	return out
 }
 
 // columnsOf returns the position in grid of each period, -1 for one off it.

@@ -14,7 +14,7 @@ const Caution = "For screening and study, not a design certificate: the local co
 // SpectrumQuestion asks for the statistics of response spectra over a
 // selection.
 type SpectrumQuestion struct {
-	Selection             // component: ComponentGeomean, siting: SitingGround by default
+	Selection             // component: ComponentRotD50, siting: SitingGround by default
 	Damping     float64   // ratio
 	Measure     Measure   // MeasurePSA by default
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
@@ -51,7 +51,7 @@ func (q SpectrumQuestion) Ask(ctx context.Context, store *db.Store) (*SpectrumAn
 
 func (q SpectrumQuestion) withDefaults() (SpectrumQuestion, error) {
 	var err error
-	q.Selection, err = q.Selection.withDefaults(ComponentGeomean, SitingGround, statisticsComponents)
+	q.Selection, err = q.Selection.withDefaults(ComponentRotD50, SitingGround, statisticsComponents)
 	if err != nil {
 		return q, err
 	}

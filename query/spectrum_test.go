@@ -82,6 +82,8 @@ func TestSpectrumComponents(t *testing.T) {
 		governing string
 		leftOut   []LeftOut
 	}{
+		{"", 3, 3, 0.005, 0.08, "R3 rotd50", []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}},
+		{ComponentRotD100, 3, 3, 0.00625, 0.1, "R3 rotd100", []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}},
 		{ComponentGeomean, 3, 3, 0.005, 0.08, "R3 geomean", []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}},
 		{ComponentLarger, 3, 3, 0.005, 0.08, "R3 larger", []LeftOut{{"one horizontal component only", 1}, {"siting borehole", 1}, {"siting structure", 1}}},
 		{ComponentEach, 7, 4, 0.005, 0.25, "R4 h1", []LeftOut{{"siting borehole", 1}, {"siting structure", 1}}},
@@ -177,7 +179,7 @@ func TestSpectrumMistakes(t *testing.T) {
 		{SpectrumQuestion{Damping: 1}, "damping: 1 is 100% of critical; it must be at least 0 and less than 1, written 5% or 0.05"},
 		{SpectrumQuestion{Damping: math.NaN()}, "damping: NaN is NaN% of critical; it must be at least 0 and less than 1, written 5% or 0.05"},
 		{SpectrumQuestion{Measure: "sa"}, `measure: unknown measure "sa"; accepted: sd, psv, psa`},
-		{SpectrumQuestion{Selection: Selection{Component: "all"}}, `component: unknown component "all"; accepted here: each, h1, h2, v, geomean, larger`},
+		{SpectrumQuestion{Selection: Selection{Component: "all"}}, `component: unknown component "all"; accepted here: rotd50, rotd100, geomean, larger, each, h1, h2, v`},
 		{SpectrumQuestion{Selection: Selection{Siting: "moon"}}, `siting: unknown siting "moon"; accepted: ground, free-field, structure, borehole, unknown, all`},
 		{SpectrumQuestion{Percentiles: []float64{-1}}, "percentiles: -1 is outside 0 to 100"},
 		{SpectrumQuestion{PeriodsS: []float64{0}}, "period: 0 s is not positive and finite"},
@@ -254,14 +256,15 @@ func TestOffGridIsComputed(t *testing.T) {
 		}
 		return solver.SD(nil, c.samples())[0]
 	}
+	geomean := Selection{Component: ComponentGeomean}
 	cases := []struct {
 		name     string
 		question SpectrumQuestion
 	}{
-		{"period", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{0.7}}},
-		{"damping", SpectrumQuestion{Damping: 0.03, PeriodsS: []float64{math.Pi}}},
-		{"average method", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkAverage}},
-		{"linear method", SpectrumQuestion{Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkLinear}},
+		{"period", SpectrumQuestion{Selection: geomean, Damping: 0.02, PeriodsS: []float64{0.7}}},
+		{"damping", SpectrumQuestion{Selection: geomean, Damping: 0.03, PeriodsS: []float64{math.Pi}}},
+		{"average method", SpectrumQuestion{Selection: geomean, Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkAverage}},
+		{"linear method", SpectrumQuestion{Selection: geomean, Damping: 0.02, PeriodsS: []float64{math.Pi}, Method: spectrum.NewmarkLinear}},
 	}
 	for _, c := range cases {
 		q := c.question
@@ -288,12 +291,15 @@ func TestNumberOfWorkers(t *testing.T) {
 		}})
 	}
 	store := newStore(t, handGrid, records)
-	q := SpectrumQuestion{Damping: 0.05, PeriodsS: []float64{0.2, 0.9, math.Pi}}
-	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(1))
-	one := written(t, askSpectrum(t, store, q), FormatJSON, UnitsSI)
-	runtime.GOMAXPROCS(8)
-	if eight := written(t, askSpectrum(t, store, q), FormatJSON, UnitsSI); eight != one {
-		t.Errorf("eight workers give\n%s\none gives\n%s", eight, one)
+	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(0))
+	for _, component := range []Component{ComponentRotD50, ComponentGeomean} {
+		q := SpectrumQuestion{Selection: Selection{Component: component}, Damping: 0.05, PeriodsS: []float64{0.2, 0.9, math.Pi}}
+		runtime.GOMAXPROCS(1)
+		one := written(t, askSpectrum(t, store, q), FormatJSON, UnitsSI)
+		runtime.GOMAXPROCS(8)
+		if eight := written(t, askSpectrum(t, store, q), FormatJSON, UnitsSI); eight != one {
+			t.Errorf("%s: eight workers give\n%s\none gives\n%s", component, eight, one)
+		}
 	}
 }
 

@@ -27,6 +27,10 @@ type inventedRecord struct {
 	distanceKM   *float64
 	start        time.Time
 	components   []inventedComponent
+	// unrotated leaves out the spectra of the pair over all directions, which are
+	// otherwise those of a component whose level is the geometric mean of both
+	// for RotD50, and 1.25 times the larger for RotD100.
+	unrotated bool
 }
 
 // inventedComponent has a stored SD of level·(period position + 1) at the first
@@ -39,6 +43,9 @@ type inventedComponent struct {
 	stepS float64 // 0: 0.01
 	peak  float64 // m/s² of the pulse; 0: 1
 	axis  string  // "": by the role
+	// azimuthDeg is that of a horizontal, NaN where unknown; 0: by the role.
+	azimuthDeg float64
+	isShort    bool // ends with the pulse
 }
 
 func ptr[T any](x T) *T { return &x }
@@ -114,6 +121,20 @@ func (r inventedRecord) put(ctx context.Context, tx *db.Tx, run int64, g db.Gene
 			return err
 		}
 	}
+	level := map[string]float64{}
+	for _, c := range r.components {
+		level[c.role] = c.level
+	}
+	a, isFirst := level[db.RoleH1]
+	b, isSecond := level[db.RoleH2]
+	if r.unrotated || !isFirst || !isSecond {
+		return nil
+	}
+	for role, level := range map[string]float64{db.RoleRotD50: math.Sqrt(a * b), db.RoleRotD100: 1.25 * max(a, b)} {
+		if err := tx.PutRotated(ctx, id, g.ID, role, inventedComponent{level: level}.spectra(g.Grid)); err != nil {
+			return err
+		}
+	}
 	return nil
 }
 
@@ -129,13 +150,14 @@ func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64
 		Role: c.role, Axis: "horizontal", Label: c.role, StepS: c.step(), Samples: len(samples), Unit: "m/s2", Processing: "corrected",
 		LowCutHz: ptr(0.1), SourceID: src, SourceLine: 3,
 	}
-	switch c.role {
-	case db.RoleH1:
-		component.AzimuthDeg = ptr(0.0)
-	case db.RoleH2:
+	switch {
+	case c.role == db.RoleV:
+		component.Axis = "vertical"
+	case math.IsNaN(c.azimuthDeg):
+	case c.azimuthDeg == 0 && c.role == db.RoleH2:
 		component.AzimuthDeg = ptr(90.0)
 	default:
-		component.Axis = "vertical"
+		component.AzimuthDeg = ptr(c.azimuthDeg)
 	}
 	if c.axis != "" {
 		component.Axis = c.axis
@@ -150,13 +172,17 @@ func (c inventedComponent) step() float64 {
 	return c.stepS
 }
 
-// samples is one sine pulse of 0.5 s.
+// samples is one sine pulse of 0.5 s with 0.1 s of silence after it.
 func (c inventedComponent) samples() []float64 {
 	peak := c.peak
 	if peak == 0 {
 		peak = 1
 	}
-	out := make([]float64, int(math.Round(0.6/c.step())))
+	seconds := 0.6
+	if c.isShort {
+		seconds = 0.5
+	}
+	out := make([]float64, int(math.Round(seconds/c.step())))
 	for i := range out {
 		if t := float64(i) * c.step(); t < 0.5 {
 			out[i] = peak * math.Sin(2*math.Pi*t)

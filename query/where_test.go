@@ -216,7 +216,7 @@ func TestPairAttributes(t *testing.T) {
 	first.SourceFormat, second.SourceFormat = "at2", "at2"
 	first.SourcePath, second.SourcePath = "a", "b"
 	first.AzimuthDeg, second.AzimuthDeg = ptr(0.0), ptr(90.0)
-	a := pairAttributes(ComponentGeomean, first, second)
+	a := pairAttributes(&motion{members: []*db.HeldComponent{first, second}, role: string(ComponentGeomean)})
 	numbers := []struct {
 		name      string
 		got, want float64
@@ -233,7 +233,7 @@ func TestPairAttributes(t *testing.T) {
 	if a.Component != "geomean" || a.Format != "at2" || a.Source != "a + b" {
 		t.Errorf("strings %q %q %q", a.Component, a.Format, a.Source)
 	}
-	if b := pairAttributes(ComponentLarger, first, second); !near(b.PGA, 0.4) || b.PGV != 0.8 || b.Component != "larger" {
+	if b := pairAttributes(&motion{members: []*db.HeldComponent{first, second}, role: string(ComponentLarger)}); !near(b.PGA, 0.4) || b.PGV != 0.8 || b.Component != "larger" {
 		t.Errorf("larger: %v %v %q", b.PGA, b.PGV, b.Component)
 	}
 }
@@ -297,7 +297,9 @@ func TestAttributeDetails(t *testing.T) {
 			for i := range whole[1:] {
 				for kind, of := range map[string]func(c []db.HeldComponent) attributes{
 					"component": func(c []db.HeldComponent) attributes { return componentAttributes(&c[i]) },
-					"pair":      func(c []db.HeldComponent) attributes { return pairAttributes(ComponentLarger, &c[i], &c[i+1]) },
+					"pair": func(c []db.HeldComponent) attributes {
+						return pairAttributes(&motion{members: []*db.HeldComponent{&c[i], &c[i+1]}, role: string(ComponentLarger)})
+					},
 				} {
 					want := reflect.ValueOf(of(whole)).FieldByIndex(field.Index)
 					got := reflect.ValueOf(of(read)).FieldByIndex(field.Index)

@@ -24,9 +24,9 @@ func exportOrdinatesCommand() *cli.Command {
 	return &cli.Command{
 		Name:  "ordinates",
 		Usage: "CSV of single spectral ordinates: record,component,damping,period_s,sd_m,psv_m_s,psa_g",
-		Description: "Everything held is written, structure and borehole channels too, unless filtered. Damping is a ratio,\n" +
+		Description: "Everything held is written, structure and borehole channels and rotd50 and rotd100 too, unless filtered. Damping is a ratio,\n" +
 			"g is 9.80665 m/s². Rows are ordered by record, component, damping and period.",
-		Flags: append(selectionFlags("h1, h2 or v (default: all)", "as for query spectrum (default: all)"),
+		Flags: append(selectionFlags("all, recorded (without pairs over all directions), each, h1, h2, v, rotd50 or rotd100 (default: all)", "as for query spectrum (default: all)"),
 			&cli.StringFlag{Name: "damping", Usage: "damping ratios, a `LIST` such as 5% or 2%,0.05 (default: the grid's)"},
 			&cli.StringFlag{Name: "band", Usage: "periods of the grid to write, `FROM:TO` in s"},
 		),

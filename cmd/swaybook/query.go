@@ -32,7 +32,7 @@ func selectionFlags(component, siting string) []cli.Flag {
 
 func statisticsFlags() []cli.Flag {
 	flags := selectionFlags(
-		"each, h1, h2, v, geomean or larger (default: geomean, of the two horizontals)",
+		"of a horizontal pair rotd50 or rotd100 (median or maximum over all directions), geomean or larger; single: each (horizontal), h1, h2 or v (default: rotd50)",
 		"what instruments stand on: ground (free-field, ground, and where unknown), free-field, structure, borehole, unknown, all, or a list (default: ground)")
 	return append(flags,
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
@@ -182,7 +182,7 @@ func queryRecordsCommand() *cli.Command {
 	return &cli.Command{
 		Name:  "records",
 		Usage: "what is held, or what was rejected and why",
-		Flags: append(selectionFlags("h1, h2 or v (default: all)", "as for query spectrum (default: all)"),
+		Flags: append(selectionFlags("recorded, all (pairs stored over all directions too), each, h1, h2, v, rotd50 or rotd100 (default: recorded)", "as for query spectrum (default: all)"),
 			&cli.BoolFlag{Name: "rejected", Usage: "list what could not be stored, and why"},
 			formatFlag("table, csv or json"),
 		),
