@@ -1,85 +1,86 @@
 package db
 
 import (
+	"context"
 	"database/sql"
 	"encoding/json"
 	"fmt"
 )
 
-// componentQuery reads components with the details asked for.
-type componentQuery struct {
-	details  Details
-	events   map[int64]*Event
-	stations map[int64]*Station
+// HeldComponent is a stored component with what is known of its record.
+type HeldComponent struct {
+	ID       int64
+	RecordID int64
+	Record   *Record
+	Component
+	Peaks // of the ground motion
 }
 
-// componentRow is a component as SQL gives it.
-type componentRow struct {
-	HeldComponent
-	record          Record
-	event, station  sql.NullInt64
-	start, warnings string
+// Peaks are PGA in m/s², PGV in m/s and PGD in m.
+type Peaks struct{ PGA, PGV, PGD float64 }
+
+// Details says what is read of components beside what every selection needs:
+// RecordID, Role, and of the record Code, Siting and Event. A question over
+// thousands of components spends its time on what it asks for, column by column.
+type Details uint
+
+// What can be asked for.
+const (
+	DetailRecord  Details = 1 << iota // the rest of Record
+	DetailMotion                      // AzimuthDeg and StepS
+	DetailPeaks                       // Peaks
+	DetailChannel                     // ID and the rest of Component, the source file's description too
+	AllDetails    = DetailRecord | DetailMotion | DetailPeaks | DetailChannel
+)
+
+// Components returns every held component with these details, ordered by record
+// code and role.
+func (s *Snapshot) Components(ctx context.Context, details Details) ([]HeldComponent, error) {
+	return s.selectComponents(ctx, details, "")
 }
 
-// columns are what is read of a component, and where it goes.
-func (q *componentQuery) columns(v *componentRow) (names string, into []any) {
-	names = `c.id, c.record_id, c.role, c.azimuth_deg, c.step_s, c.samples, r.code, r.siting, r.event_id`
-	into = []any{&v.ID, &v.RecordID, &v.Role, &v.AzimuthDeg, &v.StepS, &v.Samples, &v.record.Code, &v.record.Siting, &v.event}
-	if q.details&DetailRecord != 0 {
-		names += `, r.station_id, r.instrument, coalesce(r.start_at, ''), r.distance_km`
-		into = append(into, &v.station, &v.record.Instrument, &v.start, &v.record.DistanceKM)
-	}
-	if q.details&DetailPeaks != 0 {
-		names += `, pga.value, pgv.value, pgd.value`
-		into = append(into, &v.PGA, &v.PGV, &v.PGD)
-	}
-	if q.details&DetailChannel != 0 {
-		names += `, c.axis, c.label, c.rank, c.channel, c.unit, c.processing, c.low_cut_hz, c.high_cut_hz,
-			c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format`
-		into = append(into, &v.Axis, &v.Label, &v.Rank, &v.Channel, &v.Unit, &v.Processing, &v.LowCutHz, &v.HighCutHz,
-			&v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine, &v.SourcePath, &v.SourceSHA256, &v.SourceFormat)
-	}
-	return names, into
+// ComponentsOf returns the components that the file with this digest gave, as
+// the transaction sees them.
+func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
+	s := Snapshot{tx: t.tx.tx, Generation: g}
+	return s.selectComponents(ctx, AllDetails, sha256)
 }
 
-// text is the query up to its condition, without parameters.
-func (q *componentQuery) text(generation int64) string {
-	names, _ := q.columns(&componentRow{})
-	text := `SELECT ` + names + ` FROM component c JOIN record r ON r.id = c.record_id `
-	if q.details&DetailPeaks != 0 {
-		for _, m := range [][2]string{{"pga", MeasurePGA}, {"pgv", MeasurePGV}, {"pgd", MeasurePGD}} {
-			text += fmt.Sprintf(`LEFT JOIN measure %[1]s ON %[1]s.record_id = r.id AND %[1]s.role = c.role
-				AND %[1]s.generation_id = %[3]d AND %[1]s.name = '%[2]s' `, m[0], m[1], generation)
-		}
+// selectComponents reads the components of the file with this digest, of all
+// files where it is "". Records, events and stations are shared by components and
+// read once.
+func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256 string) ([]HeldComponent, error) {
+	condition := ""
+	var args []any
+	if sha256 != "" {
+		condition = ` WHERE c.source_id = (SELECT id FROM source_file WHERE sha256 = ?)`
+		args = append(args, sha256)
 	}
-	if q.details&DetailChannel != 0 {
-		text += `JOIN source_file f ON f.id = c.source_id `
+	records, err := s.records(ctx, details, condition, args)
+	if err != nil {
+		return nil, err
 	}
-	return text
-}
-
-// collect reads about n rows. Components of one record share it.
-func (q *componentQuery) collect(rows *sql.Rows, n int) ([]HeldComponent, error) {
+	var n int
+	if err := s.tx.QueryRowContext(ctx, `SELECT count(*) FROM component c`+condition, args...).Scan(&n); err != nil {
+		return nil, fmt.Errorf("count components: %w", err)
+	}
+	rows, err := s.tx.QueryContext(ctx, componentQuery(details, s.Generation.ID)+condition+` ORDER BY r.code, c.role`, args...)
+	if err != nil {
+		return nil, fmt.Errorf("read components: %w", err)
+	}
 	defer rows.Close()
 	var v componentRow
-	_, into := q.columns(&v)
+	_, into := v.columns(details)
 	out := make([]HeldComponent, 0, n)
-	var record *Record
 	for rows.Next() {
 		v = componentRow{}
 		if err := rows.Scan(into...); err != nil {
-			return nil, err
+			return nil, fmt.Errorf("read components: %w", err)
 		}
-		if len(out) == 0 || out[len(out)-1].RecordID != v.RecordID {
-			var err error
-			if record, err = q.record(&v); err != nil {
-				return nil, err
-			}
-		}
-		v.Record = record
+		v.Record = records[v.RecordID]
 		if v.warnings != "" {
 			if err := json.Unmarshal([]byte(v.warnings), &v.Warnings); err != nil {
-				return nil, err
+				return nil, fmt.Errorf("read components: %w", err)
 			}
 		}
 		out = append(out, v.HeldComponent)
@@ -87,10 +88,103 @@ func (q *componentQuery) collect(rows *sql.Rows, n int) ([]HeldComponent, error)
 	return out, rows.Err()
 }
 
-func (q *componentQuery) record(v *componentRow) (*Record, error) {
-	r := v.record
-	r.Event, r.Station = q.events[v.event.Int64], q.stations[v.station.Int64]
-	var err error
-	r.Start, err = parseTime(v.start)
-	return &r, err
+// componentRow is a component as SQL gives it.
+type componentRow struct {
+	HeldComponent
+	warnings string
+}
+
+// columns are what is read of a component, and where it goes. Without details
+// these stand in indices, so that the tables need not be read.
+func (v *componentRow) columns(d Details) (names string, into []any) {
+	names, into = `c.record_id, c.role`, []any{&v.RecordID, &v.Role}
+	if d&DetailMotion != 0 {
+		names += `, c.azimuth_deg, c.step_s`
+		into = append(into, &v.AzimuthDeg, &v.StepS)
+	}
+	if d&DetailPeaks != 0 {
+		names += `, pga.value, pgv.value, pgd.value`
+		into = append(into, &v.PGA, &v.PGV, &v.PGD)
+	}
+	if d&DetailChannel != 0 {
+		names += `, c.id, c.axis, c.label, c.rank, c.channel, c.samples, c.unit, c.processing, c.low_cut_hz, c.high_cut_hz,
+			c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format`
+		into = append(into, &v.ID, &v.Axis, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing, &v.LowCutHz, &v.HighCutHz,
+			&v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine, &v.SourcePath, &v.SourceSHA256, &v.SourceFormat)
+	}
+	return names, into
+}
+
+// componentQuery is the query up to its condition, without parameters.
+func componentQuery(d Details, generation int64) string {
+	names, _ := new(componentRow).columns(d)
+	text := `SELECT ` + names + ` FROM component c JOIN record r ON r.id = c.record_id`
+	if d&DetailPeaks != 0 {
+		for _, m := range [][2]string{{"pga", MeasurePGA}, {"pgv", MeasurePGV}, {"pgd", MeasurePGD}} {
+			text += fmt.Sprintf(` LEFT JOIN measure %[1]s ON %[1]s.record_id = c.record_id AND %[1]s.role = c.role
+				AND %[1]s.generation_id = %[3]d AND %[1]s.name = '%[2]s'`, m[0], m[1], generation)
+		}
+	}
+	if d&DetailChannel != 0 {
+		text += ` JOIN source_file f ON f.id = c.source_id`
+	}
+	return text
+}
+
+// records reads the records, by id, of the components that meet the condition.
+func (s *Snapshot) records(ctx context.Context, d Details, condition string, args []any) (map[int64]*Record, error) {
+	where := func(id string) string {
+		if condition == "" {
+			return ""
+		}
+		return ` WHERE id IN (SELECT ` + id + ` FROM record r JOIN component c ON c.record_id = r.id` + condition + `)`
+	}
+	events, err := s.events(ctx, where("r.event_id"), args)
+	if err != nil {
+		return nil, err
+	}
+	var stations map[int64]*Station
+	if d&DetailRecord != 0 {
+		if stations, err = s.stations(ctx, where("r.station_id"), args); err != nil {
+			return nil, err
+		}
+	}
+	var v recordRow
+	names, into := v.columns(d)
+	rows, err := s.tx.QueryContext(ctx, `SELECT `+names+` FROM record`+where("r.id"), args...)
+	if err != nil {
+		return nil, fmt.Errorf("read records: %w", err)
+	}
+	defer rows.Close()
+	out := map[int64]*Record{}
+	for rows.Next() {
+		v = recordRow{}
+		if err := rows.Scan(into...); err != nil {
+			return nil, fmt.Errorf("read records: %w", err)
+		}
+		r := v.Record
+		r.Event, r.Station = events[v.event.Int64], stations[v.station.Int64]
+		if r.Start, err = parseTime(v.start); err != nil {
+			return nil, err
+		}
+		out[v.id] = &r
+	}
+	return out, rows.Err()
+}
+
+// recordRow is a record as SQL gives it.
+type recordRow struct {
+	Record
+	id             int64
+	event, station sql.NullInt64
+	start          string
+}
+
+func (v *recordRow) columns(d Details) (names string, into []any) {
+	names, into = `id, code, siting, event_id`, []any{&v.id, &v.Code, &v.Siting, &v.event}
+	if d&DetailRecord != 0 {
+		names += `, station_id, instrument, coalesce(start_at, ''), distance_km`
+		into = append(into, &v.station, &v.Instrument, &v.start, &v.DistanceKM)
+	}
+	return names, into
 }

@@ -5,7 +5,6 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
-	"strings"
 	"time"
 )
 
@@ -35,85 +34,6 @@ func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
 		return ErrEmpty
 	}
 	return f(&Snapshot{tx: tx, Generation: g})
-}
-
-// HeldComponent is a stored component with what is known of its record.
-type HeldComponent struct {
-	ID       int64
-	RecordID int64
-	Record   *Record
-	Component
-	// Of the ground motion, where DetailPeaks was asked for.
-	Peaks
-}
-
-// Peaks are PGA in m/s², PGV in m/s and PGD in m.
-type Peaks struct{ PGA, PGV, PGD float64 }
-
-// Details says what is read of components beside what a selection always needs:
-// ID, RecordID, Role, AzimuthDeg, StepS, Samples, and of the record Code, Siting
-// and Event. A question over thousands of components spends its time on what it
-// asks for.
-type Details uint
-
-// What can be asked for.
-const (
-	DetailRecord  Details = 1 << iota // the rest of Record
-	DetailPeaks                       // Peaks
-	DetailChannel                     // the rest of Component, the source file's description too
-	AllDetails    = DetailRecord | DetailPeaks | DetailChannel
-)
-
-// Components returns every held component with these details, ordered by record
-// code and role.
-func (s *Snapshot) Components(ctx context.Context, details Details) ([]HeldComponent, error) {
-	return s.selectComponents(ctx, details, "")
-}
-
-// ComponentsOf returns the components that the file with this digest gave, as
-// the transaction sees them.
-func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
-	s := Snapshot{tx: t.tx.tx, Generation: g}
-	return s.selectComponents(ctx, AllDetails, sha256)
-}
-
-// selectComponents reads the components of the file with this digest, of all
-// files where it is "". Events and stations are shared by many components and
-// read once.
-func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256 string) ([]HeldComponent, error) {
-	condition, parents := "", ""
-	var args []any
-	if sha256 != "" {
-		condition = "WHERE c.source_id = (SELECT id FROM source_file WHERE sha256 = ?) "
-		parents = ` WHERE id IN (SELECT r.%s_id FROM record r JOIN component c ON c.record_id = r.id
-			JOIN source_file f ON f.id = c.source_id WHERE f.sha256 = ?)`
-		args = append(args, sha256)
-	}
-	q := componentQuery{details: details}
-	var err error
-	q.events, err = s.events(ctx, strings.ReplaceAll(parents, "%s", "event"), args)
-	if err != nil {
-		return nil, err
-	}
-	if details&DetailRecord != 0 {
-		q.stations, err = s.stations(ctx, strings.ReplaceAll(parents, "%s", "station"), args)
-		if err != nil {
-			return nil, err
-		}
-	}
-	var n int
-	if err := s.tx.QueryRowContext(ctx, "SELECT count(*) FROM component c "+condition, args...).Scan(&n); err != nil {
-		return nil, fmt.Errorf("count components: %w", err)
-	}
-	rows, err := s.tx.QueryContext(ctx, q.text(s.Generation.ID)+condition+"ORDER BY r.code, c.role, c.id", args...)
-	if err != nil {
-		return nil, fmt.Errorf("read components: %w", err)
-	}
-	out, err := q.collect(rows, n)
-	if err != nil {
-		return nil, fmt.Errorf("read components: %w", err)
-	}
-	return out, nil
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
@@ -232,18 +152,18 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 
 // Samples returns a component's acceleration in m/s², checked against its
 // digest.
-func (s *Snapshot) Samples(ctx context.Context, componentID int64) ([]float64, error) {
+func (s *Snapshot) Samples(ctx context.Context, recordID int64, role string) ([]float64, error) {
 	var n int
 	var digest string
 	var data []byte
-	err := s.tx.QueryRowContext(ctx, `SELECT c.samples, s.sha256, s.data FROM component c JOIN series s ON s.component_id = c.id WHERE c.id = ?`, componentID).
+	err := s.tx.QueryRowContext(ctx, `SELECT c.samples, s.sha256, s.data FROM component c JOIN series s ON s.component_id = c.id WHERE c.record_id = ? AND c.role = ?`, recordID, role).
 		Scan(&n, &digest, &data)
 	if err != nil {
-		return nil, fmt.Errorf("read samples of component %d: %w", componentID, err)
+		return nil, fmt.Errorf("read samples: %w", err)
 	}
 	samples, err := DecodeSamples(data, n, digest)
 	if err != nil {
-		return nil, fmt.Errorf("component %d: %w", componentID, err)
+		return nil, fmt.Errorf("read samples: %w", err)
 	}
 	return samples, nil
 }

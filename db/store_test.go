@@ -130,7 +130,7 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		if *c.Record.Event.Magnitude != 6.1 || *c.Record.Station.Vs30MPS != 420 || *c.Record.DistanceKM != 12.5 || c.PGA != 0.5 || c.PGD != 1.5 {
 			t.Errorf("component = %+v", c)
 		}
-		if samples, err := v.Samples(t.Context(), c.ID); err != nil || len(samples) != 100 {
+		if samples, err := v.Samples(t.Context(), c.RecordID, c.Role); err != nil || len(samples) != 100 {
 			t.Errorf("samples: %d, %v", len(samples), err)
 		}
 		for _, periods := range []Span{{0, 3}, {1, 2}, {2, 3}, {0, 2}} {

@@ -86,6 +86,7 @@ var texts = []string{
 var attributeDetails = map[string]db.Details{
 	"distance_km": db.DetailRecord, "vs30_m_s": db.DetailRecord, "station_latitude": db.DetailRecord, "station_longitude": db.DetailRecord,
 	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "instrument": db.DetailRecord,
+	"dt_s": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
 	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
 	"low_cut_hz": db.DetailChannel, "high_cut_hz": db.DetailChannel,
 	"format": db.DetailChannel, "processing": db.DetailChannel, "source": db.DetailChannel,

@@ -74,7 +74,7 @@ func (s *solvers) solve(ctx context.Context, snapshot *db.Snapshot, m *motion, p
 			put(sd, true)
 			return nil
 		}
-		samples, err := snapshot.Samples(ctx, c.ID)
+		samples, err := snapshot.Samples(ctx, c.RecordID, c.Role)
 		if err != nil {
 			return err
 		}

@@ -104,12 +104,12 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 }
 
 func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*DemandAnswer, error) {
-	picked, err := pick(ctx, snapshot, q.Selection, 0)
+	s := source{snapshot: snapshot, damping: q.Structure.Damping, method: q.Method}
+	band := q.bandPeriods(snapshot.Generation.Grid.PeriodsS)
+	picked, err := pick(ctx, snapshot, q.Selection, s.details(band))
 	if err != nil {
 		return nil, err
 	}
-	s := source{snapshot: snapshot, damping: q.Structure.Damping, method: q.Method}
-	band := q.bandPeriods(snapshot.Generation.Grid.PeriodsS)
 	loaded, err := s.load(ctx, picked.motions, band)
 	if err != nil {
 		return nil, err

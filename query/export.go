@@ -67,7 +67,7 @@ func (q ExportQuestion) write(ctx context.Context, snapshot *db.Snapshot, w io.W
 	if err != nil {
 		return nil, err
 	}
-	picked, err := pick(ctx, snapshot, q.Selection, 0)
+	picked, err := pick(ctx, snapshot, q.Selection, db.DetailMotion)
 	if err != nil {
 		return nil, err
 	}

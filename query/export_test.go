@@ -94,7 +94,7 @@ func TestExportParts(t *testing.T) {
 	whole, _ := export(t, store, ExportQuestion{})
 	var parts bytes.Buffer
 	err := store.View(t.Context(), func(s *db.Snapshot) error {
-		picked, err := pick(t.Context(), s, Selection{Component: ComponentAll, Siting: SitingAll}, 0)
+		picked, err := pick(t.Context(), s, Selection{Component: ComponentAll, Siting: SitingAll}, db.DetailMotion)
 		if err != nil {
 			return err
 		}

@@ -45,10 +45,10 @@ func notRotatable(first, second *db.HeldComponent) string {
 // pairSamples reads two horizontals that can be rotated and makes them fit for
 // it.
 func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (a, b []float64, err error) {
-	if a, err = snapshot.Samples(ctx, first.ID); err != nil {
+	if a, err = snapshot.Samples(ctx, first.RecordID, first.Role); err != nil {
 		return nil, nil, err
 	}
-	if b, err = snapshot.Samples(ctx, second.ID); err != nil {
+	if b, err = snapshot.Samples(ctx, second.RecordID, second.Role); err != nil {
 		return nil, nil, err
 	}
 	between, _ := betweenDeg(first, second)

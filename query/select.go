@@ -41,6 +41,9 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		return nil, err
 	}
 	details |= condition.details()
+	if s.Component.IsRotated() || s.Component == ComponentAll {
+		details |= db.DetailMotion // by which pairs are rotated
+	}
 	held, err := snapshot.Components(ctx, details)
 	if err != nil {
 		return nil, err

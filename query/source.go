@@ -27,6 +27,15 @@ func (s *source) gridPosition() int {
 	return slices.Index(s.snapshot.Generation.Grid.Dampings, s.damping)
 }
 
+// details are what load needs of components: what computing needs, where there is
+// something to compute.
+func (s *source) details(periodsS []float64) db.Details {
+	if s.gridPosition() < 0 || slices.Contains(columnsOf(s.snapshot.Generation.Grid.PeriodsS, periodsS), -1) {
+		return db.DetailMotion
+	}
+	return 0
+}
+
 // load returns the SD of the motions at the periods: read from the store where
 // damping and period are on its grid, computed from the stored samples
 // otherwise, and where the store lacks the spectrum of a rotated pair.

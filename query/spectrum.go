@@ -104,11 +104,11 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	if err != nil {
 		return nil, err
 	}
-	picked, err := pick(ctx, snapshot, q.Selection, 0)
+	s := source{snapshot: snapshot, damping: q.Damping, method: q.Method}
+	picked, err := pick(ctx, snapshot, q.Selection, s.details(periods))
 	if err != nil {
 		return nil, err
 	}
-	s := source{snapshot: snapshot, damping: q.Damping, method: q.Method}
 	loaded, err := s.load(ctx, picked.motions, periods)
 	if err != nil {
 		return nil, err
