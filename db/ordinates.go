@@ -2,6 +2,7 @@ package db
 
 import (
 	"bytes"
+	"encoding/binary"
 	"fmt"
 	"math"
 	"math/big"
@@ -83,16 +84,14 @@ var powersOfTen = sync.OnceValue(func() *[powersKnown]wide {
 // product cannot fall on the wrong side.
 func fastOrdinate(field []byte, powers *[powersKnown]wide) (float64, bool) {
 	const first = ordinateWidth - 22
-	if field[first-1] != ' ' || field[first+1] != '.' || field[first+18] != 'e' {
+	if field[first-2] != ' ' || field[first-1] != ' ' || field[first+1] != '.' || field[first+18] != 'e' {
 		return 0, false
 	}
-	digits := uint64(field[first] - '0')
-	bad := digits > 9
-	for _, c := range field[first+2 : first+18] {
-		d := uint64(c - '0')
-		bad = bad || d > 9
-		digits = 10*digits + d
-	}
+	whole := uint64(field[first] - '0')
+	high, okHigh := eightDigits(binary.LittleEndian.Uint64(field[first+2:]))
+	low, okLow := eightDigits(binary.LittleEndian.Uint64(field[first+10:]))
+	digits := whole*1e16 + high*1e8 + low
+	bad := whole > 9 || !okHigh || !okLow
 	tens, ones := int(field[first+20]-'0'), int(field[first+21]-'0')
 	exponent := 10*tens + ones
 	switch field[first+19] {
@@ -112,4 +111,19 @@ func fastOrdinate(field []byte, powers *[powersKnown]wide) (float64, bool) {
 	product := float64(hi * p.hi)
 	rest := math.FMA(hi, p.hi, -product)
 	return product + (rest + (float64(hi*p.lo) + float64(lo*p.hi))), true
+}
+
+// eightDigits reads eight ASCII digits, the first in the lowest byte. Neighbours
+// are joined to numbers of two, four and eight digits, all at once: a multiplier
+// such as 10·2⁸ + 1 adds ten times a byte to the next.
+func eightDigits(text uint64) (value uint64, ok bool) {
+	const zeros, highHalves, sixes = 0x3030303030303030, 0xf0f0f0f0f0f0f0f0, 0x0606060606060606
+	// A digit's high half is 3, and stays 3 when 6 is added.
+	if text&highHalves != zeros || (text+sixes)&highHalves != zeros {
+		return 0, false
+	}
+	v := text - zeros
+	v = v * (10<<8 + 1) >> 8 & 0x00ff00ff00ff00ff
+	v = v * (100<<16 + 1) >> 16 & 0x0000ffff0000ffff
+	return v * (10000<<32 + 1) >> 32, true
 }

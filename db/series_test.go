@@ -3,7 +3,9 @@ package db
 import (
 	"math"
 	"math/rand/v2"
+	"slices"
 	"strconv"
+	"strings"
 	"testing"
 )
 
@@ -229,6 +231,23 @@ func TestOrdinatesOfAllSizesRoundTrip(t *testing.T) {
 		for i, x := range values {
 			if math.Float64bits(got[i]) != math.Float64bits(x) {
 				t.Fatalf("seed %d, round %d: %v comes back as %v", seed, round, x, got[i])
+			}
+		}
+	}
+}
+
+// Whatever byte stands where in an ordinate, it is read as strconv reads it.
+func TestOrdinatesWithAnyByte(t *testing.T) {
+	valid := encodeOrdinates(nil, []float64{7.290123456789e-5})
+	for at := range valid {
+		for c := range 256 {
+			text := slices.Clone(valid)
+			text[at] = byte(c)
+			want, errWant := strconv.ParseFloat(strings.TrimLeft(string(text), " "), 64)
+			got := []float64{0}
+			err := Ordinates(text).Decode(got)
+			if (err == nil) != (errWant == nil) || err == nil && got[0] != want {
+				t.Errorf("%q = %v, %v, want %v, %v", text, got[0], err, want, errWant)
 			}
 		}
 	}
