@@ -13,7 +13,7 @@ import (
 )
 
 // benchStore holds invented pairs on the default grid: spectra of random
-// numbers, and samples samples of noise each.
+// numbers, also over all directions, and samples samples of noise each.
 func benchStore(b *testing.B, components, samples int) *db.Store {
 	b.Helper()
 	grid := db.Grid(spectrum.DefaultGrid())
@@ -33,6 +33,11 @@ func benchStore(b *testing.B, components, samples int) *db.Store {
 			}
 			for _, role := range []string{db.RoleH1, db.RoleH2} {
 				if err := putRandom(ctx, tx, rng, record, role, samples, g); err != nil {
+					return err
+				}
+			}
+			for _, role := range []string{db.RoleRotD50, db.RoleRotD100} {
+				if err := tx.PutRotated(ctx, record, g.ID, role, randomSpectra(rng, g.Grid)); err != nil {
 					return err
 				}
 			}
@@ -56,26 +61,48 @@ func putRandom(ctx context.Context, tx *db.Tx, rng *rand.Rand, record int64, rol
 		samples[i] = math.Round(1e6*rng.NormFloat64()) / 1e6
 	}
 	data, digest := db.EncodeSamples(samples, 1)
+	c := db.Component{Role: role, Axis: "horizontal", StepS: 0.01, Samples: n, SourceID: src}
+	return tx.AddComponent(ctx, record, c, data, digest, g.ID, randomSpectra(rng, g.Grid))
+}
+
+func randomSpectra(rng *rand.Rand, grid db.Grid) db.Spectra {
 	computed := db.Spectra{Measures: map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 0.1, db.MeasurePGD: 0.01}}
-	for range g.Grid.Dampings {
-		sd := make([]float64, len(g.Grid.PeriodsS))
-		for p, t := range g.Grid.PeriodsS {
+	for range grid.Dampings {
+		sd := make([]float64, len(grid.PeriodsS))
+		for p, t := range grid.PeriodsS {
 			sd[p] = t * t * math.Exp(rng.NormFloat64()) / 40
 		}
 		computed.SD = append(computed.SD, sd)
 	}
-	c := db.Component{Role: role, Axis: "horizontal", StepS: 0.01, Samples: n, SourceID: src}
-	return tx.AddComponent(ctx, record, c, data, digest, g.ID, computed)
+	return computed
 }
 
 // BenchmarkSpectrum asks for 251 periods of 3000 stored components.
 func BenchmarkSpectrum(b *testing.B) {
 	store := benchStore(b, 3000, 50)
-	for _, component := range []Component{ComponentEach, ComponentGeomean} {
+	for _, component := range []Component{ComponentEach, ComponentRotD50, ComponentGeomean} {
 		b.Run(string(component), func(b *testing.B) {
 			b.ReportAllocs()
 			for b.Loop() {
 				q := SpectrumQuestion{Selection: Selection{Component: component, Where: "magnitude > 1"}, Damping: 0.05}
+				if _, err := q.Ask(b.Context(), store); err != nil {
+					b.Fatal(err)
+				}
+			}
+			b.ReportMetric(3000*float64(b.N)/b.Elapsed().Seconds(), "components/s")
+		})
+	}
+}
+
+// BenchmarkDemandOnGrid asks for one period of the grid of 3000 stored
+// components, which takes one ordinate of each spectrum.
+func BenchmarkDemandOnGrid(b *testing.B) {
+	store := benchStore(b, 3000, 50)
+	for _, component := range []Component{ComponentEach, ComponentRotD50} {
+		b.Run(string(component), func(b *testing.B) {
+			b.ReportAllocs()
+			for b.Loop() {
+				q := DemandQuestion{Selection: Selection{Component: component}, Structure: Structure{PeriodS: 1, Damping: 0.05}}
 				if _, err := q.Ask(b.Context(), store); err != nil {
 					b.Fatal(err)
 				}
@@ -105,17 +132,21 @@ func BenchmarkReduce(b *testing.B) {
 	}
 }
 
-// BenchmarkDemand asks for one period off the grid of 300 components of 8000
-// samples.
-func BenchmarkDemand(b *testing.B) {
+// BenchmarkDemandOffGrid asks for one period off the grid of 300 components of
+// 8000 samples, each by itself and over all directions.
+func BenchmarkDemandOffGrid(b *testing.B) {
 	store := benchStore(b, 300, 8000)
-	for b.Loop() {
-		q := DemandQuestion{Structure: Structure{PeriodS: 1.2345, Damping: 0.02}}
-		if _, err := q.Ask(b.Context(), store); err != nil {
-			b.Fatal(err)
-		}
+	for _, component := range []Component{ComponentEach, ComponentRotD50} {
+		b.Run(string(component), func(b *testing.B) {
+			for b.Loop() {
+				q := DemandQuestion{Selection: Selection{Component: component}, Structure: Structure{PeriodS: 1.2345, Damping: 0.02}}
+				if _, err := q.Ask(b.Context(), store); err != nil {
+					b.Fatal(err)
+				}
+			}
+			b.ReportMetric(300*float64(b.N)/b.Elapsed().Seconds(), "components/s")
+		})
 	}
-	b.ReportMetric(300*float64(b.N)/b.Elapsed().Seconds(), "components/s")
 }
 
 // BenchmarkExport writes 251 periods and five dampings of 1000 components.
