@@ -124,8 +124,8 @@ func cutsOf(phase, damping float64) int {
 // unless there were more than maxParts: the shorter they are, the closer bounds on
 // them, and the more there are.
 const (
-	partPhase = 0.25
-	maxParts  = 16
+	partPhase = 0.15
+	maxParts  = 24
 )
 
 func partsOf(phase, damping float64) int {

@@ -36,8 +36,59 @@ func (p *polygon) begin(first, second float64) {
 	p.reach = kernel.Outline{}
 	p.reach[0], p.reach[half] = first, second
 	p.floor = float64(0.69 * max(first, second))
+}
+
+// sweep is the angle between the directions of a kernel.Sweep, in degrees.
+const sweep = Directions / kernel.Sweeps
+
+// settle takes in the greatest distances of a set of points in the directions of
+// a sweep, in units of unit. Between two of them, by the same weights as of a fence's corners, the
+// distance h is at least what makes that of a neighbour, beyond which is another,
+//
+//	h(neighbour)·sin(sweep) <= h·sin(beyond to neighbour) + h(beyond)·sin(neighbour to h)
+//
+// since no distance exceeds the sum of those of which its direction is made.
+func (p *polygon) settle(tops *kernel.Sweep, l int, unit float64) {
+	var h [kernel.Sweeps + 3]float64 // from the last, and two more at the end
+	for k := range h {
+		h[k] = float64(unit * tops[(k+kernel.Sweeps-1)%kernel.Sweeps][l])
+	}
+	for k := range kernel.Sweeps {
+		before, at, next, after := h[k], h[k+1], h[k+2], h[k+3]
+		reach := p.reach[k*sweep : (k+1)*sweep]
+		reach[0] = max(reach[0], at)
+		for i := 1; i < sweep; i++ {
+			w := &sweepWeights[i]
+			reach[i] = max(reach[i], float64(w.near*at)-float64(w.far*before), float64(w.nearEnd*next)-float64(w.farEnd*after))
+		}
+	}
+	for i := Directions; i < len(p.reach); i++ {
+		p.reach[i] = p.reach[Directions-1]
+	}
+	p.raise(10)
 	p.enclose()
 }
+
+// sweepWeights are those of the distances i degrees after a direction of a sweep:
+// of that and the one before, and of the next and the one after.
+var sweepWeights = func() (list [sweep]struct{ near, far, nearEnd, farEnd float64 }) {
+	whole := compass.Sin[sweep]
+	for i := range list {
+		w := &list[i]
+		w.near, w.far = compass.Sin[sweep+i]/whole, compass.Sin[i]/whole
+		w.nearEnd, w.farEnd = compass.Sin[2*sweep-i]/whole, compass.Sin[sweep-i]/whole
+	}
+	return list
+}()
+
+var sweepCompass = func() (c kernel.SweepCompass) {
+	for k := range c {
+		for i := range c[k].Cos {
+			c[k].Cos[i], c[k].Sin[i] = compass.Cos[k*sweep], compass.Sin[k*sweep]
+		}
+	}
+	return c
+}()
 
 // widen takes in points of the motion.
 func (p *polygon) widen(points []kernel.Point) {

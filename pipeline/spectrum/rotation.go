@@ -29,6 +29,8 @@ type rotation struct {
 	order                 []int     // blocks
 	first, second         []float64 // D of the components
 	directions            directions
+	sweep                 *kernel.Sweep
+	displaced             *kernel.Displaced // fast
 }
 
 // span is the bound on |u| over some time,
@@ -52,11 +54,12 @@ func (s *span) bound(u, a float64) float64 { return s.growth * (u + float64(s.re
 // its period is short, else one step or several (every).
 type rotatedLane struct {
 	polygon
-	one    *slow // the oscillator, the shortest piece its step
-	cuts   int   // those in a step
-	every  int   // steps in a piece, 1 if cut
-	rows   span  // over the time between two samples that are looked at
-	piece  span  // over a piece, time in steps of one
+	one    *slow   // the oscillator, the shortest piece its step
+	cuts   int     // those in a step
+	every  int     // steps in a piece, 1 if cut
+	unit   float64 // of displacements that are swept
+	rows   span    // over the time between two samples that are looked at
+	piece  span    // over a piece, time in steps of one
 	pieces []piece
 	wide   int  // pieces that the polygon has taken in
 	fenced bool // whether the rotation has the fence of the polygon
@@ -73,7 +76,7 @@ type piece struct {
 
 // absorbPieces is how many pieces a lane gathers before its polygon takes them
 // in, so that what that costs is shared.
-const absorbPieces = 32
+const absorbPieces = 64
 
 // pairEnd is the state of both motions at the last sample, velocities over ω.
 type pairEnd struct{ x, y, vx, vy float64 }
@@ -82,7 +85,7 @@ func newRotation() *rotation {
 	return &rotation{
 		pair:  [2]*motion{newMotion(), newMotion()},
 		fence: new(kernel.Fence), orbits: new(kernel.OrbitFence),
-		directions: newDirections(),
+		directions: newDirections(), sweep: new(kernel.Sweep), displaced: new(kernel.Displaced),
 	}
 }
 
@@ -137,36 +140,37 @@ func (r *rotation) marks() []kernel.Mark { return r.pair[0].marks[:r.pair[0].blo
 func (r *rotation) begin(l, index int) *rotatedLane {
 	lane := &r.lane[l]
 	lane.polygon.begin(r.first[index], r.second[index])
-	lane.pieces, lane.wide, lane.every, lane.fenced = lane.pieces[:0], 0, 1, false
+	lane.pieces, lane.wide, lane.every, lane.fenced, lane.unit = lane.pieces[:0], 0, 1, false, 1
 	return lane
 }
 
-// topBlocks flags the blocks that have the greatest peak of each lane, done too.
-func (r *rotation) topBlocks() []uint32 {
+// inOrder lists the blocks that can matter, those first that have the greatest
+// peaks of most lanes, then those that can matter to most.
+func (r *rotation) inOrder(lines []kernel.Line, live uint32) []int {
 	m, marks := r.pair[0], r.marks()
 	kernel.GreatestPeaks(m.top, marks)
-	*m.screen = kernel.Screen{}
 	for l := range m.top {
-		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
+		m.tops.Limit[l] = math.Nextafter(m.top[l], -1)
 	}
-	kernel.ScreenPeaks(m.screen, marks, r.blockNorms, m.done)
-	return m.done
-}
-
-// inOrder lists the blocks that can matter, in the order in which floors rise
-// soon: first those of the greatest peaks of most lanes, then those of most lanes.
-func (r *rotation) inOrder(lines []kernel.Line, live uint32) []int {
-	m := r.pair[0]
-	kernel.ScreenSquares(m.screen, r.marks(), lines, m.flags)
+	kernel.ScreenPeaks(m.tops, marks, lines, m.done)
+	kernel.ScreenSquares(m.screen, marks, lines, m.flags)
 	r.order = r.order[:0]
 	for b := range m.flags {
-		if m.flags[b]&live&^m.done[b] != 0 {
+		if m.flags[b]&live != 0 {
 			r.order = append(r.order, b)
 		}
 	}
 	rank := func(b int) int { return lanes*bits.OnesCount32(m.done[b]&live) + bits.OnesCount32(m.flags[b]&live) }
 	slices.SortStableFunc(r.order, func(a, b int) int { return rank(b) - rank(a) })
 	return r.order
+}
+
+// settle starts the polygons of lanes with what sweeps have found.
+func (r *rotation) settle(live uint32) {
+	for ; live != 0; live &= live - 1 {
+		l := bits.TrailingZeros32(live)
+		r.lane[l].settle(r.sweep, l, r.lane[l].unit)
+	}
 }
 
 // passing flags the lanes that a block can still matter to.
@@ -181,7 +185,7 @@ func (r *rotation) passing(b int, lines []kernel.Line) uint32 {
 func (r *rotation) absorb(flags uint32) {
 	for ; flags != 0; flags &= flags - 1 {
 		lane := &r.lane[bits.TrailingZeros32(flags)]
-		if n := len(lane.pieces) - lane.wide; n == 0 || lane.wide > 0 && n < absorbPieces {
+		if len(lane.pieces)-lane.wide < absorbPieces {
 			continue
 		}
 		r.points = lane.points(r.points[:0])

@@ -16,19 +16,22 @@ func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
 		o := &g.members[l]
 		lane := r.begin(l, o.index)
 		lane.one, lane.cuts = &o.part, o.parts
+		r.displaced.Scale[l], r.displaced.Slope[l], r.displaced.Level[l] = 1/o.cube, o.turn.jump/o.cube, -o.phase/o.cube
 		lane.piece = newSpan(o.part.phase, o.part.damping, 1)
 	}
 	marks := r.marks()
 	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], true)
 	live := ^uint32(0) >> (lanes - len(g.members))
-	for b, flags := range r.topBlocks() {
-		g.gather(r, b, flags&live)
-		r.absorb(flags & live)
-	}
 	g.limitPair(r)
-	for _, b := range r.inOrder(r.blockNorms, live) {
+	order := r.inOrder(r.blockNorms, live)
+	*r.sweep = kernel.Sweep{}
+	for _, b := range order[:min(sweptBlocks, len(order))] {
+		g.sweep(r, b, live)
+	}
+	r.settle(live)
+	for _, b := range order {
 		g.limitPair(r)
-		flags := r.passing(b, r.blockNorms) & live &^ r.pair[0].done[b]
+		flags := r.passing(b, r.blockNorms) & live
 		g.gather(r, b, flags)
 		r.absorb(flags)
 	}
@@ -57,6 +60,17 @@ func (g *fastGroup) limitPair(r *rotation) {
 		screen.Limit[l] = float64(r.lane[l].floor * o.cube)
 		screen.First[l], screen.Second[l] = o.phase, o.turn.jump
 	}
+}
+
+// sweep marches a block of both motions again and sweeps their samples.
+func (g *fastGroup) sweep(r *rotation, b int, live uint32) {
+	from, to := r.pair[0].block(b)
+	n := to - from
+	for _, m := range r.pair {
+		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], m.states[:n], live)
+		kernel.Displace(m.rows[:n], r.displaced, m.states[:n], m.a[from:to+1])
+	}
+	r.sweep.Add(&sweepCompass, r.pair[0].rows[:n], r.pair[1].rows[:n])
 }
 
 // gather marches a block of both motions again and collects the parts of steps

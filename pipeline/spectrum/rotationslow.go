@@ -22,14 +22,16 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	if g.stride != nil {
 		lines = r.strideNorms[g.level]
 	}
-	for b, flags := range r.topBlocks() {
-		g.gather(r, b, flags&live)
-		r.absorb(flags & live)
-	}
 	g.limitPair(r)
-	for _, b := range r.inOrder(lines, live) {
+	order := r.inOrder(lines, live)
+	*r.sweep = kernel.Sweep{}
+	for _, b := range order[:min(sweptBlocks, len(order))] {
+		g.sweep(r, b, live)
+	}
+	r.settle(live)
+	for _, b := range order {
 		g.limitPair(r)
-		flags := r.passing(b, lines) & live &^ r.pair[0].done[b]
+		flags := r.passing(b, lines) & live
 		g.gather(r, b, flags)
 		r.absorb(flags)
 	}
@@ -52,6 +54,7 @@ const maxEvery = 16
 func (g *slowGroup) begin(r *rotation, l int) {
 	o := &g.members[l]
 	lane := r.begin(l, o.index)
+	lane.unit = math.Abs(o.eq.scale)
 	lane.one, lane.cuts = o, 1
 	if o.parts > 1 {
 		lane.one, lane.cuts = o.part, o.parts
@@ -95,6 +98,23 @@ func (g *slowGroup) limitPair(r *rotation) {
 		m.screen.Limit[l] = floor / float64(o.growth*scale)
 		m.screen.First[l] = o.reach / scale
 	}
+}
+
+// sweptBlocks is how many blocks of a group are swept before others are looked at
+// closely: enough to know roughly what its motions reach in all directions.
+const sweptBlocks = 10
+
+// sweep marches a block of both motions again and sweeps their samples.
+func (g *slowGroup) sweep(r *rotation, b int, live uint32) {
+	from, to := r.pair[0].block(b)
+	if g.stride == nil {
+		from = max(from, 1)
+	}
+	rows := to - from + 1
+	for _, m := range r.pair {
+		g.trace(m, b, from, m.rows[:rows], live)
+	}
+	r.sweep.Add(&sweepCompass, r.pair[0].rows[:rows], r.pair[1].rows[:rows])
 }
 
 // gather marches a block of both motions again and collects the pieces that can

@@ -57,7 +57,7 @@ func bounds(phase, damping float64) (reach, growth float64, ok bool) {
 // peaks through: their free vibration (type fast) shows best that it grows no more.
 const freeDamping = 0.005
 
-const freePhase = 0.9
+const freePhase = 0.62
 
 // newSlow returns the exact slow form, or false if the fast one is called for.
 func newSlow(index int, phase, damping float64) (slow, bool) {

@@ -25,6 +25,8 @@ type level struct {
 	widen         func(o *Outline, c *Compass, points *Point, n int)
 	above         func(o *Outline, x float64, set *Above)
 	screenOrbits  func(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32)
+	sweep         func(s *Sweep, c *SweepCompass, x, y *Row, n int)
+	displace      func(rows *Row, q *Displaced, states *Mark, a *float64, n int)
 	exceeds       func(o *Outline, c, twice *Compass, f *Form) uint64
 	greatestOf    func(o *Outline) float64
 	project       func(rows *Row, rays *Rays, points *Point, n int, want uint32)
@@ -39,7 +41,7 @@ var portable = level{
 	screenSteps: screenStepsGeneric, greatest: greatestGeneric,
 	marchStride: marchStrideGeneric, mix: mixGeneric,
 	widen: widenGeneric, above: aboveGeneric, screenFence: screenFenceGeneric,
-	greatestOf: greatestOfGeneric, exceeds: exceedsGeneric, screenOrbits: screenOrbitsGeneric, project: projectGeneric,
+	greatestOf: greatestOfGeneric, exceeds: exceedsGeneric, sweep: sweepGeneric, displace: displaceGeneric, screenOrbits: screenOrbitsGeneric, project: projectGeneric,
 }
 
 // levels are the kernels that this processor runs, the fastest first.

@@ -69,6 +69,16 @@ func aboveAVX2(o *float64, x float64, set *uint64)
 //go:noescape
 func exceedsAVX2(o *float64, c *float64, twice *float64, form *float64) uint64
 
+// sweepAVX2 is sweepGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func sweepAVX2(s *float64, c *float64, x *float64, y *float64, n int)
+
+// displaceAVX2 is displaceGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func displaceAVX2(rows *float64, q *float64, states *float64, a *float64, n int)
+
 // screenOrbitsAVX2 is screenOrbitsGeneric for vectors of 4 lanes.
 //
 //go:noescape
@@ -153,6 +163,16 @@ func aboveAVX512(o *float64, x float64, set *uint64)
 //
 //go:noescape
 func exceedsAVX512(o *float64, c *float64, twice *float64, form *float64) uint64
+
+// sweepAVX512 is sweepGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func sweepAVX512(s *float64, c *float64, x *float64, y *float64, n int)
+
+// displaceAVX512 is displaceGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func displaceAVX512(rows *float64, q *float64, states *float64, a *float64, n int)
 
 // screenOrbitsAVX512 is screenOrbitsGeneric for vectors of 8 lanes.
 //

@@ -22,7 +22,7 @@ func vectorLevels() []level {
 			marchStride:   strideMarch(marchStrideAVX512),
 			mix:           mixing(mixAVX512),
 			widen:         widening(widenAVX512), above: masking(aboveAVX512), screenFence: fencing(screenFenceAVX512),
-			greatestOf: greatestNumber(greatestOfAVX512), exceeds: exceeding(exceedsAVX512), screenOrbits: orbiting(screenOrbitsAVX512), project: projecting(projectAVX512),
+			greatestOf: greatestNumber(greatestOfAVX512), exceeds: exceeding(exceedsAVX512), sweep: sweeping(sweepAVX512), displace: displacing(displaceAVX512), screenOrbits: orbiting(screenOrbitsAVX512), project: projecting(projectAVX512),
 		})
 	}
 	if cpu.X86.HasAVX2 && cpu.X86.HasFMA {
@@ -39,7 +39,7 @@ func vectorLevels() []level {
 			marchStride:   strideMarch(marchStrideAVX2),
 			mix:           mixing(mixAVX2),
 			widen:         widening(widenAVX2), above: masking(aboveAVX2), screenFence: fencing(screenFenceAVX2),
-			greatestOf: greatestNumber(greatestOfAVX2), exceeds: exceeding(exceedsAVX2), screenOrbits: orbiting(screenOrbitsAVX2), project: projecting(projectAVX2),
+			greatestOf: greatestNumber(greatestOfAVX2), exceeds: exceeding(exceedsAVX2), sweep: sweeping(sweepAVX2), displace: displacing(displaceAVX2), screenOrbits: orbiting(screenOrbitsAVX2), project: projecting(projectAVX2),
 		})
 	}
 	return list
@@ -137,5 +137,15 @@ func exceeding(f func(o, c, twice, form *float64) uint64) func(*Outline, *Compas
 func orbiting(f func(fence, x, y, lines *float64, flags *uint32, n int, want uint32)) func(*OrbitFence, *Mark, *Mark, *Line, *uint32, int, uint32) {
 	return func(fence *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32) {
 		f(&fence.Sides[0].XX[0], &x.X[0], &y.X[0], &lines.First, flags, n, want)
+	}
+}
+
+func sweeping(f func(s, c, x, y *float64, n int)) func(*Sweep, *SweepCompass, *Row, *Row, int) {
+	return func(s *Sweep, c *SweepCompass, x, y *Row, n int) { f(&s[0][0], &c[0].Cos[0], &x[0], &y[0], n) }
+}
+
+func displacing(f func(rows, q, states, a *float64, n int)) func(*Row, *Displaced, *Mark, *float64, int) {
+	return func(rows *Row, q *Displaced, states *Mark, a *float64, n int) {
+		f(&rows[0], &q.Scale[0], &states.X[0], a, n)
 	}
 }

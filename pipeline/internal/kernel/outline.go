@@ -70,6 +70,38 @@ func Project(rows []Row, rays *Rays, points []Point, want uint32) {
 	}
 }
 
+// Sweeps is the number of directions of a Sweep, evenly spaced over half a turn.
+const Sweeps = 18
+
+// Sweep holds for each of its directions the greatest distance in it, of each
+// lane.
+type Sweep [Sweeps]Row
+
+// SweepCompass holds the cosines and sines of a Sweep's directions, each in all
+// lanes of a vector.
+type SweepCompass [Sweeps]struct{ Cos, Sin [8]float64 }
+
+// Add raises the distances to the greatest |x·cos θ + y·sin θ| of the rows. It
+// panics if lengths differ.
+func (s *Sweep) Add(c *SweepCompass, x, y []Row) {
+	checkLines(len(x), len(y), len(y))
+	if len(x) > 0 {
+		current.sweep(s, c, &x[0], &y[0], len(x))
+	}
+}
+
+// Displaced holds for each lane what makes displacements of free vibrations.
+type Displaced struct{ Scale, Slope, Level Row }
+
+// Displace sets rows[i] to Scale·states[i].X + Slope·(a[i+1] − a[i]) + Level·a[i].
+// It panics unless there is one row a state, and one more of a.
+func Displace(rows []Row, q *Displaced, states []Mark, a []float64) {
+	checkLines(len(rows), len(states), len(a)-1)
+	if len(rows) > 0 {
+		current.displace(&rows[0], q, &states[0], &a[0], len(rows))
+	}
+}
+
 // Rays holds a direction for each lane.
 type Rays struct{ Cos, Sin Row }
 
@@ -245,6 +277,30 @@ func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, 
 			if top > float64(r*r) {
 				out[i] |= 1 << l
 			}
+		}
+	}
+}
+
+func sweepGeneric(s *Sweep, c *SweepCompass, x, y *Row, n int) {
+	xs, ys := unsafe.Slice(x, n), unsafe.Slice(y, n)
+	for k := range s {
+		cos, sin, tops := c[k].Cos[0], c[k].Sin[0], &s[k]
+		for i := range xs {
+			for l := range tops {
+				if d := math.Abs(math.FMA(cos, xs[i][l], float64(sin*ys[i][l]))); d > tops[l] {
+					tops[l] = d
+				}
+			}
+		}
+	}
+}
+
+func displaceGeneric(rows *Row, q *Displaced, states *Mark, a *float64, n int) {
+	out, list, ground := unsafe.Slice(rows, n), unsafe.Slice(states, n), unsafe.Slice(a, n+1)
+	for i := range out {
+		level, slope := ground[i], ground[i+1]-ground[i]
+		for l := range out[i] {
+			out[i][l] = math.FMA(q.Scale[l], list[i].X[l], math.FMA(q.Slope[l], slope, float64(q.Level[l]*level)))
 		}
 	}
 }

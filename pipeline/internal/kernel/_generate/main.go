@@ -51,6 +51,8 @@ func main() {
 		l.widen()
 		l.above()
 		l.exceeds()
+		l.sweep()
+		l.displace()
 		l.screenOrbits()
 		l.screenFence()
 		l.greatestOf()

@@ -359,3 +359,89 @@ func (l level) orbitVector(in map[string]reg.Register, want reg.Register, v int,
 		SUBQ(operand.Imm(4), out) // the loop moves on by 8
 	})
 }
+
+// sweepCount is kernel.Sweeps.
+const sweepCount = 18
+
+// sweep takes a vector of lanes through all rows, for as many directions at once
+// as registers hold.
+func (l level) sweep() {
+	TEXT("sweep"+l.name, NOSPLIT, "func(s, c, x, y *float64, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("sweep%s is sweepGeneric for vectors of %d lanes.", l.name, l.width))
+	s, c := Load(Param("s"), GP64()), Load(Param("c"), GP64())
+	x, y := Load(Param("x"), GP64()), Load(Param("y"), GP64())
+	n := Load(Param("n"), GP64())
+	mask, count := l.absolute(), sweepCount
+	if !l.keep {
+		count = 6
+	}
+	for v := range lanes / l.width {
+		for k := 0; k < sweepCount; k += count {
+			l.sweepVector(s, c, x, y, n, v, k, count, mask)
+		}
+	}
+	VZEROUPPER()
+	RET()
+}
+
+func (l level) sweepVector(s, c, x, y, n reg.Register, v, from, count int, mask reg.VecVirtual) {
+	xs, ys, left := GP64(), GP64(), GP64()
+	MOVQ(x, xs)
+	MOVQ(y, ys)
+	MOVQ(n, left)
+	tops := make([]reg.VecVirtual, count)
+	for k := range tops {
+		tops[k] = l.vector()
+		VMOVUPD(l.at(s, from+k, 0, v), tops[k])
+	}
+	loop := fmt.Sprintf("row%d_%d", v, from)
+	Label(loop)
+	u, w := l.vector(), l.vector()
+	VMOVUPD(l.at(xs, 0, 0, v), u)
+	VMOVUPD(l.at(ys, 0, 0, v), w)
+	for k := range tops {
+		t := l.vector()
+		VMULPD(operand.Mem{Base: c, Disp: (from+k)*128 + 64}, w, t)
+		VFMADD231PD(operand.Mem{Base: c, Disp: (from + k) * 128}, u, t)
+		l.and(mask, t, t)
+		VMAXPD(tops[k], t, tops[k])
+	}
+	ADDQ(operand.U32(row), xs)
+	ADDQ(operand.U32(row), ys)
+	DECQ(left)
+	JNZ(operand.LabelRef(loop))
+	for k := range tops {
+		VMOVUPD(tops[k], l.at(s, from+k, 0, v))
+	}
+}
+
+// displace takes all lanes of a row at a time.
+func (l level) displace() {
+	TEXT("displace"+l.name, NOSPLIT, "func(rows, q, states, a *float64, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("displace%s is displaceGeneric for vectors of %d lanes.", l.name, l.width))
+	rows, q := Load(Param("rows"), GP64()), Load(Param("q"), GP64())
+	states, a := Load(Param("states"), GP64()), Load(Param("a"), GP64())
+	n := Load(Param("n"), GP64())
+	at, next, x := l.vector(), l.vector(), l.vector()
+	Label("row")
+	VBROADCASTSD(operand.Mem{Base: a}, at)
+	VBROADCASTSD(operand.Mem{Base: a, Disp: 8}, next)
+	VSUBPD(at, next, next)
+	for v := range lanes / l.width {
+		VMULPD(l.at(q, 2, 0, v), at, x)
+		VFMADD231PD(l.at(q, 1, 0, v), next, x)
+		y := l.vector()
+		VMOVUPD(l.at(states, markX, 0, v), y)
+		VFMADD231PD(l.at(q, 0, 0, v), y, x)
+		VMOVUPD(x, l.at(rows, 0, 0, v))
+	}
+	ADDQ(operand.U32(row), rows)
+	ADDQ(operand.U32(3*row), states)
+	ADDQ(operand.Imm(8), a)
+	DECQ(n)
+	JNZ(operand.LabelRef("row"))
+	VZEROUPPER()
+	RET()
+}
