@@ -119,15 +119,16 @@ func (g *fastGroup) enter(m *motion, b int, flags uint32, first bool) {
 
 // sampled raises best to the greatest |u| at the starts of steps.
 func (g *fastGroup) sampled(m *motion, from int, states []kernel.Mark, flags uint32) {
+	ground := m.a[from : from+len(states)+1]
 	for ; flags != 0; flags &= flags - 1 {
 		l := bits.TrailingZeros32(flags)
 		o := &g.members[l]
-		top := 0.0
-		for k := range states {
-			a, next := m.a[from+k], m.a[from+k+1]
-			u := states[k].X[l] + (float64(o.turn.jump*(next-a)) - float64(o.phase*a))
-			top = max(top, math.Abs(u))
+		jump, phase, top := o.turn.jump, o.phase, uint64(0)
+		a := ground[0]
+		for k, next := range ground[1:] {
+			u := states[k].X[l] + (float64(jump*(next-a)) - float64(phase*a))
+			top, a = max(top, magnitude(u)), next
 		}
-		m.best[l] = max(m.best[l], top/o.cube)
+		m.best[l] = max(m.best[l], math.Float64frombits(top)/o.cube)
 	}
 }

@@ -76,13 +76,19 @@ func (m *motion) load(samples []float64) (known float64, done bool) {
 
 // greatest returns the greatest |a|, NaN where one is not finite.
 func greatest(samples []float64) float64 {
-	top, sum := 0.0, 0.0
+	top := uint64(0)
 	for _, a := range samples {
-		top = max(top, math.Abs(a))
-		sum += a - a // 0, or NaN where a is not finite
+		top = max(top, magnitude(a))
 	}
-	return top + sum
+	if top >= magnitude(math.Inf(1)) {
+		return math.NaN()
+	}
+	return math.Float64frombits(top)
 }
+
+// magnitude orders numbers by their absolute value, NaN last: the greatest of
+// integers is found faster than that of numbers that can be NaN.
+func magnitude(x float64) uint64 { return math.Float64bits(x) &^ (1 << 63) }
 
 func (m *motion) scale(samples []float64, top float64) {
 	_, m.exponent = math.Frexp(top)
@@ -90,8 +96,9 @@ func (m *motion) scale(samples []float64, top float64) {
 	half := -m.exponent / 2
 	f, g := math.Ldexp(1, half), math.Ldexp(1, -m.exponent-half)
 	m.a = resize(m.a, len(samples))
+	scaled := m.a[:len(samples)]
 	for i, a := range samples {
-		m.a[i] = float64(a*f) * g
+		scaled[i] = float64(a*f) * g
 	}
 }
 
@@ -104,19 +111,32 @@ func (m *motion) measure() {
 	m.flags, m.done = resize(m.flags, blocks), resize(m.done, blocks)
 	for b := range m.blockLines {
 		from, to := m.block(b)
-		var block kernel.Line
-		for k := from; k < to; k++ {
-			d := m.a[k+1] - m.a[k]
-			m.bend[k] = 0
-			if k+1 < steps {
-				m.bend[k] = (m.a[k+2] - m.a[k+1]) - d
-			}
-			step := kernel.Line{First: max(math.Abs(m.a[k]), math.Abs(m.a[k+1])), Second: math.Abs(d)}
-			m.stepLines[k] = step
-			block.First, block.Second = max(block.First, step.First), max(block.Second, step.Second)
+		m.blockLines[b] = measureSteps(m.stepLines[from:to], m.bend[from:to], m.a[from:to+1])
+		if to < steps {
+			m.bend[to-1] = (m.a[to+1] - m.a[to]) - (m.a[to] - m.a[to-1])
 		}
-		m.blockLines[b] = block
 	}
+}
+
+// measureSteps sets lines of steps and changes of slope, 0 for that after the
+// last, from the samples, and returns the greatest of the lines.
+func measureSteps(lines []kernel.Line, bend, a []float64) (top kernel.Line) {
+	lines, bend = lines[:len(a)-1], bend[:len(a)-1]
+	at, before := a[0], 0.0
+	size, greatest, steepest := magnitude(at), uint64(0), uint64(0)
+	for k, next := range a[1:] {
+		d := next - at
+		if k > 0 {
+			bend[k-1] = d - before
+		}
+		sizeNext, rise := magnitude(next), magnitude(d)
+		ends := max(size, sizeNext)
+		lines[k] = kernel.Line{First: math.Float64frombits(ends), Second: math.Float64frombits(rise)}
+		greatest, steepest = max(greatest, ends), max(steepest, rise)
+		at, before, size = next, d, sizeNext
+	}
+	bend[len(bend)-1] = 0
+	return kernel.Line{First: math.Float64frombits(greatest), Second: math.Float64frombits(steepest)}
 }
 
 // steps is the number of intervals between samples.

@@ -16,18 +16,31 @@ import "math"
 // Fewer than two samples have no duration and give pgv = pgd = 0. NaN in gives
 // NaN out.
 func Peaks(stepS float64, acceleration []float64) (pga, pgv, pgd float64) {
-	var v, u float64 // in units of the step
+	var s groundStep // time in steps
+	top := uint64(0)
 	for k, a := range acceleration {
-		pga = max(pga, math.Abs(a))
+		top = max(top, magnitude(a))
 		if k+1 == len(acceleration) {
 			break
 		}
-		s := groundStep{u: u, v: v, a: a, slope: acceleration[k+1] - a}
-		pgv = max(pgv, s.peakVelocity())
-		pgd = max(pgd, s.peakDisplacement())
-		u, v = s.displacementAt(1), s.velocityAt(1)
+		s.a, s.slope = a, acceleration[k+1]-a
+		u, v := s.displacementAt(1), s.velocityAt(1)
+		turns := opposite(a, acceleration[k+1])
+		if turns || !(math.Abs(v) <= pgv) {
+			pgv = max(pgv, s.peakVelocity())
+		}
+		// u departs from its chord by an eighth of the greatest |a| at most.
+		reach := float64((math.Abs(a) + math.Abs(s.slope)) * 0.125)
+		switch {
+		case math.Abs(s.u)+reach <= pgd && math.Abs(u)+reach <= pgd:
+		case s.v > 0 && v > 0 && !turns || s.v < 0 && v < 0 && !turns:
+			pgd = max(pgd, math.Abs(u)) // v has no zero
+		default:
+			pgd = max(pgd, s.peakDisplacement())
+		}
+		s.u, s.v = u, v
 	}
-	return pga, float64(pgv * stepS), float64(pgd*stepS) * stepS
+	return math.Float64frombits(top), float64(pgv * stepS), float64(pgd*stepS) * stepS
 }
 
 // groundStep is the motion of the ground within one step, time from 0 to 1.

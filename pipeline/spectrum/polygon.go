@@ -62,11 +62,16 @@ func (p *polygon) settle(tops *kernel.Sweep, l int, unit float64) {
 			reach[i] = max(reach[i], float64(w.near*at)-float64(w.far*before), float64(w.nearEnd*next)-float64(w.farEnd*after))
 		}
 	}
+	p.repeat()
+	p.raise(10)
+	p.enclose()
+}
+
+// repeat copies the last direction to those beyond it.
+func (p *polygon) repeat() {
 	for i := Directions; i < len(p.reach); i++ {
 		p.reach[i] = p.reach[Directions-1]
 	}
-	p.raise(10)
-	p.enclose()
 }
 
 // sweepWeights are those of the distances i degrees after a direction of a sweep:

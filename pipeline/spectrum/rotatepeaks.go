@@ -42,13 +42,14 @@ type groundPath struct{ a, v, u []kernel.Point }
 func newGroundPath(first, second []float64) groundPath {
 	n := len(first)
 	p := groundPath{make([]kernel.Point, n), make([]kernel.Point, n), make([]kernel.Point, n)}
-	for k := range n {
-		p.a[k] = kernel.Point{X: first[k], Y: second[k]}
+	var x, y groundStep
+	for k := range first {
+		x.a, y.a = first[k], second[k]
+		p.a[k], p.v[k], p.u[k] = kernel.Point{X: x.a, Y: y.a}, kernel.Point{X: x.v, Y: y.v}, kernel.Point{X: x.u, Y: y.u}
 		if k+1 < n {
-			x, y := p.step(k, 1, 0), p.step(k, 0, 1)
-			x.slope, y.slope = first[k+1]-first[k], second[k+1]-second[k]
-			p.v[k+1] = kernel.Point{X: x.velocityAt(1), Y: y.velocityAt(1)}
-			p.u[k+1] = kernel.Point{X: x.displacementAt(1), Y: y.displacementAt(1)}
+			x.slope, y.slope = first[k+1]-x.a, second[k+1]-y.a
+			x.u, x.v = x.displacementAt(1), x.velocityAt(1)
+			y.u, y.v = y.displacementAt(1), y.velocityAt(1)
 		}
 	}
 	return p
@@ -70,25 +71,33 @@ func (p *groundPath) step(k int, cos, sin float64) groundStep {
 //
 // Only steps that can matter are looked into: see polygon.
 func (p *groundPath) peaks(points []kernel.Point, peak func(*groundStep) float64, bend func(k int) float64) (rotd50, rotd100 float64) {
-	var outline polygon
+	outline := new(polygon)
 	outline.widen(points)
 	outline.raise(12)
 	for k := 0; peak != nil && k+1 < len(points); k++ {
 		excess := float64(bend(k) * 0.125)
-		if max(reach(points[k].X, points[k].Y), reach(points[k+1].X, points[k+1].Y))+excess <= outline.floor {
+		if reach(points[k].X, points[k].Y)+excess <= outline.floor && reach(points[k+1].X, points[k+1].Y)+excess <= outline.floor {
 			continue
 		}
-		for i := range outline.reach[:Directions] {
-			cos, sin := compass.Cos[i], compass.Sin[i]
-			end := max(math.Abs(math.FMA(cos, points[k].X, float64(sin*points[k].Y))),
-				math.Abs(math.FMA(cos, points[k+1].X, float64(sin*points[k+1].Y))))
-			if end+excess > outline.reach[i] {
-				s := p.step(k, cos, sin)
-				outline.reach[i] = max(outline.reach[i], peak(&s))
-			}
+		if !outline.surrounds(excess, 0, 0, excess, points[k], points[k+1]) {
+			p.look(outline, k, points, excess, peak)
 		}
 	}
 	d := outline.reach[:Directions]
 	slices.Sort(d)
 	return middle(d), d[Directions-1]
+}
+
+// look raises the outline to the peaks of step k where they can exceed it.
+func (p *groundPath) look(outline *polygon, k int, points []kernel.Point, excess float64, peak func(*groundStep) float64) {
+	for i := range outline.reach[:Directions] {
+		cos, sin := compass.Cos[i], compass.Sin[i]
+		end := max(math.Abs(math.FMA(cos, points[k].X, float64(sin*points[k].Y))),
+			math.Abs(math.FMA(cos, points[k+1].X, float64(sin*points[k+1].Y))))
+		if end+excess > outline.reach[i] {
+			s := p.step(k, cos, sin)
+			outline.reach[i] = max(outline.reach[i], peak(&s))
+		}
+	}
+	outline.repeat()
 }

@@ -110,10 +110,10 @@ func (r *rotation) prepare(strided [len(strides)]bool) {
 	first, second := r.pair[0], r.pair[1]
 	r.blockNorms = norms(r.blockNorms, first.blockLines, second.blockLines)
 	r.stepNorms = norms(r.stepNorms, first.stepLines, second.stepLines)
+	first.loadStrides(strided)
+	second.loadStrides(strided)
 	for i, used := range strided {
 		if used {
-			first.loadStride(i)
-			second.loadStride(i)
 			r.strideNorms[i] = norms(r.strideNorms[i], first.strides[i].lines, second.strides[i].lines)
 		}
 	}

@@ -134,11 +134,7 @@ func (s *Solver) SD(dst, acceleration []float64) []float64 {
 		}
 		return dst
 	}
-	for i, used := range s.strides {
-		if used {
-			m.loadStride(i)
-		}
-	}
+	m.loadStrides(s.strides)
 	for i := range s.slow {
 		s.slow[i].solve(dst, m)
 	}

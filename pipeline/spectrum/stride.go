@@ -152,38 +152,54 @@ func gaussLegendre() (nodes, weights [7]float64) {
 	return nodes, weights
 }
 
-// loadStride prepares a component for stride i. The last block is marched step
-// by step, whatever its length.
-func (m *motion) loadStride(i int) {
-	s, over := &m.strides[i], strides[i]
-	count := (m.blocks() - 1) * blockSteps / over
-	s.inputs = resize(s.inputs, count)
-	kernel.Mix(s.inputs, strideShares[i], m.a[:count*over+1])
-	s.lines = resize(s.lines, m.blocks())
-	for b := range s.lines {
-		from, to := m.block(b)
-		top := 0.0
-		for ; b+1 < len(s.lines) && from < to; from += over {
-			top = max(top, departure(m.a[from:from+over+1]))
+// loadStrides prepares a component for the strides in use. The last block is
+// marched step by step, whatever its length.
+func (m *motion) loadStrides(used [len(strides)]bool) {
+	for i, over := range strides {
+		if used[i] {
+			s := &m.strides[i]
+			count := (m.blocks() - 1) * blockSteps / over
+			s.inputs, s.lines = resize(s.inputs, count), resize(s.lines, m.blocks())
+			kernel.Mix(s.inputs, strideShares[i], m.a[:count*over+1])
 		}
-		s.lines[b] = kernel.Line{First: top + float64(m.blockLines[b].First*0.125)}
+	}
+	for b := range m.blocks() {
+		from, to := m.block(b)
+		path := groundOf(m.a[from : to+1])
+		for i, over := range strides {
+			if !used[i] {
+				continue
+			}
+			top := 0.0
+			for k := 0; b+1 < m.blocks() && k < blockSteps; k += over {
+				top = max(top, departure(path[k:k+over+1]))
+			}
+			m.strides[i].lines[b] = kernel.Line{First: top + float64(m.blockLines[b].First*0.125)}
+		}
 	}
 }
 
-// departure returns the greatest distance of the ground's displacement from its
-// chord at the samples a, at most blockSteps steps. Within a step the distance
-// exceeds that at its ends by max|a|/8 at most.
-func departure(a []float64) float64 {
-	var path [blockSteps + 1]float64
+// groundOf returns the displacement of the ground at the samples a of a block, from
+// rest at the first.
+func groundOf(a []float64) (path [blockSteps + 1]float64) {
 	v, d := 0.0, 0.0
 	for j, next := range a[1:] {
 		d += v + (float64(a[j]*(1./3)) + float64(next*(1./6)))
 		v += float64((a[j] + next) * 0.5)
 		path[j+1] = d
 	}
-	slope, top := d/float64(len(a)-1), 0.0
-	for j := range a {
-		top = max(top, math.Abs(path[j]-float64(slope*float64(j))))
+	return path
+}
+
+// departure returns the greatest distance of a path from its chord at samples.
+// Within a step it exceeds that at the ends by max|a|/8 at most.
+func departure(path []float64) float64 {
+	first, n := path[0], len(path)-1
+	slope, top := (path[n]-first)/float64(n), uint64(0)
+	chord := first
+	for _, d := range path[1:n] {
+		chord += slope
+		top = max(top, magnitude(d-chord))
 	}
-	return top
+	return math.Float64frombits(top)
 }

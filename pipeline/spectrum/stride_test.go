@@ -12,8 +12,8 @@ func TestStrideBlocks(t *testing.T) {
 	for seed := range uint64(3) {
 		m := newMotion()
 		m.load(seededMotion(seed, 9*blockSteps+21))
+		m.loadStrides([...]bool{true, true})
 		for level, over := range strides {
-			m.loadStride(level)
 			for _, phase := range []float64{1e-6, 1e-3, 0.1, 0.3, maxStridePhase} {
 				for _, damping := range []float64{0, 0.05, 0.2} {
 					o, _ := newSlow(0, phase/float64(over), damping)
