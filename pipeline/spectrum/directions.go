@@ -222,7 +222,7 @@ func (r *rotation) follow(best float64, lane *rotatedLane, s *piece, u, end, cos
 	x, y := r.pair[0].a[s.sample:], r.pair[1].a[s.sample:]
 	a, b := math.FMA(cos, x[0], float64(sin*y[0])), math.FMA(cos, x[1], float64(sin*y[1]))
 	if lane.cuts > 1 {
-		p := newParts(u, 0, a, b, lane.cuts)
+		p := newParts(groundedStep{u: u, a: a, next: b}, lane.cuts)
 		a = p.a + float64(p.rise*float64(s.part))
 		return o.step(best, u, end, a, a+p.rise)
 	}

@@ -56,6 +56,7 @@ type rotatedLane struct {
 	polygon
 	one    *slow   // the oscillator, the shortest piece its step
 	cuts   int     // those in a step
+	whole  line    // of whole steps
 	every  int     // steps in a piece, 1 if cut
 	unit   float64 // of displacements that are swept
 	rows   span    // over the time between two samples that are looked at
@@ -225,17 +226,44 @@ func (lane *rotatedLane) within(s *span, a float64) float64 {
 // vibration can matter, if it dies away.
 const fewCuts = 4
 
-// gatherParts collects the parts of a step that are not within the fence, if its
+// gatherStep collects the parts of a step that are not within the fence, if its
 // free vibration about its straight-line solution (type fast) can matter. a is the
 // greatest length of the ground acceleration in the step.
-func (lane *rotatedLane) gatherParts(sample int, first, second parts, a float64) {
-	o, n := lane.one, float64(lane.cuts)
-	x, xRise := first.line(o)
-	y, yRise := second.line(o)
-	from, to := kernel.Point{X: x, Y: y}, kernel.Point{X: x + float64(n*xRise), Y: y + float64(n*yRise)}
-	if (lane.cuts > fewCuts || o.damping < freeDamping) && lane.surrounds(first.u-x, (first.v-xRise)/o.phase, second.u-y, (second.v-yRise)/o.phase, from, to) {
-		return
+func (lane *rotatedLane) gatherStep(sample int, x, y groundedStep, a float64) {
+	if lane.cuts > fewCuts || lane.one.damping < freeDamping {
+		w := &lane.whole
+		xLine, xRise := w.line(x.a, x.next)
+		yLine, yRise := w.line(y.a, y.next)
+		from, to := kernel.Point{X: xLine, Y: yLine}, kernel.Point{X: xLine + xRise, Y: yLine + yRise}
+		vx, vy := float64((x.v-xRise)*w.inverse), float64((y.v-yRise)*w.inverse)
+		if lane.surrounds(x.u-xLine, vx, y.u-yLine, vy, from, to) {
+			return
+		}
 	}
+	lane.gatherParts(sample, newParts(x, lane.cuts), newParts(y, lane.cuts), a)
+}
+
+// groundedStep is the motion at the start of a step, and the ground acceleration
+// at both ends.
+type groundedStep struct{ u, v, a, next float64 }
+
+// line gives straight-line solutions of steps: inverse is 1/φ, square 1/φ² and lag
+// 2ζ/φ.
+type line struct{ inverse, square, lag float64 }
+
+func newLine(phase, damping float64) line {
+	return line{1 / phase, 1 / float64(phase*phase), float64(2*damping) / phase}
+}
+
+// line returns the solution at the start of a step and its change over it.
+func (w *line) line(a, next float64) (at, rise float64) {
+	slope := next - a
+	return -float64(w.square * (a - float64(w.lag*slope))), -float64(w.square * slope)
+}
+
+// gatherParts collects the parts of a step that are not within the fence.
+func (lane *rotatedLane) gatherParts(sample int, first, second parts, a float64) {
+	o := lane.one
 	a = float64(a * first.square)
 	limit := lane.within(&lane.piece, a)
 	outside := lane.isBeyond(first.u, second.u, limit)
@@ -256,19 +284,11 @@ func (lane *rotatedLane) gatherParts(sample int, first, second parts, a float64)
 // parts follows a step in parts, in units of one.
 type parts struct{ u, v, a, rise, square float64 }
 
-// newParts cuts a step from displacement u and velocity v under ground
-// acceleration from a to next.
-func newParts(u, v, a, next float64, cuts int) parts {
+// newParts cuts a step.
+func newParts(s groundedStep, cuts int) parts {
 	n := float64(cuts)
 	square := 1 / float64(n*n)
-	return parts{u: u, v: v / n, a: float64(a * square), rise: float64((next - a) / n * square), square: square}
-}
-
-// line returns the straight-line solution at the start of a part and its change
-// over the part.
-func (p *parts) line(o *slow) (at, rise float64) {
-	square := 1 / float64(o.phase*o.phase)
-	return -float64(square * (p.a - float64(float64(2*o.damping)/o.phase*p.rise))), -float64(square * p.rise)
+	return parts{u: s.u, v: s.v / n, a: float64(s.a * square), rise: float64((s.next - s.a) / n * square), square: square}
 }
 
 func (p *parts) next(o *slow) {

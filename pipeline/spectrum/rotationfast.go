@@ -15,7 +15,7 @@ func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	for l := range g.members {
 		o := &g.members[l]
 		lane := r.begin(l, o.index)
-		lane.one, lane.cuts = &o.part, o.parts
+		lane.one, lane.cuts, lane.whole = &o.part, o.parts, newLine(o.phase, o.part.damping)
 		r.displaced.Scale[l], r.displaced.Slope[l], r.displaced.Level[l] = 1/o.cube, o.turn.jump/o.cube, -o.phase/o.cube
 		lane.piece = newSpan(o.part.phase, o.part.damping, 1)
 	}
@@ -122,12 +122,16 @@ func (g *fastGroup) setFence(r *rotation, flags uint32) {
 
 // gatherStep collects the parts of a step from row k.
 func (g *fastGroup) gatherStep(r *rotation, l, sample, k int) {
-	o, lane := &g.members[l], &r.lane[l]
-	var both [2]parts
+	d, w, jump := r.displaced, &r.lane[l].whole, g.members[l].turn.jump
+	var both [2]groundedStep
 	for i, m := range r.pair {
-		s := state{m.states[k].X[l], m.states[k].Y[l]}
 		a, next := m.a[sample], m.a[sample+1]
-		both[i] = newParts(o.displacement(s, a, next-a), o.velocity(s, next-a), a, next, lane.cuts)
+		shift := float64(jump*(next-a)) - float64(g.members[l].phase*a)
+		both[i] = groundedStep{
+			u: float64(d.Scale[l] * (m.states[k].X[l] + shift)),
+			v: float64(w.square * (m.states[k].Y[l] - (next - a))),
+			a: a, next: next,
+		}
 	}
-	lane.gatherParts(sample, both[0], both[1], r.stepNorms[sample].First)
+	r.lane[l].gatherStep(sample, both[0], both[1], r.stepNorms[sample].First)
 }

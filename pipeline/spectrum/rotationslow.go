@@ -61,6 +61,7 @@ func (g *slowGroup) begin(r *rotation, l int) {
 	} else {
 		lane.every = everyOf(o.phase, r.peak, max(r.first[o.index], r.second[o.index]))
 	}
+	lane.whole = newLine(o.phase, o.damping)
 	lane.rows = newSpan(o.phase, o.damping, float64(lane.every))
 	lane.piece = newSpan(lane.one.phase, o.damping, float64(lane.every))
 }
@@ -194,22 +195,22 @@ func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, a float64, 
 
 // gatherStep collects the parts of a step from row k.
 func (g *slowGroup) gatherStep(r *rotation, l, sample, k int) {
-	o, lane := &g.members[l], &r.lane[l]
-	var both [2]parts
+	o := &g.members[l]
+	var both [2]groundedStep
 	for i, m := range r.pair {
-		u, next := float64(o.eq.scale*m.rows[k][l]), float64(o.eq.scale*m.rows[k+1][l])
-		v := o.velocity(u, next-u, m.a[sample], m.a[sample+1])
-		both[i] = newParts(u, v, m.a[sample], m.a[sample+1], lane.cuts)
+		u, end := float64(o.eq.scale*m.rows[k][l]), float64(o.eq.scale*m.rows[k+1][l])
+		a, next := m.a[sample], m.a[sample+1]
+		both[i] = groundedStep{u: u, v: o.velocity(u, end-u, a, next), a: a, next: next}
 	}
-	lane.gatherParts(sample, both[0], both[1], r.stepNorms[sample].First)
+	r.lane[l].gatherStep(sample, both[0], both[1], r.stepNorms[sample].First)
 }
 
 // gatherFirst collects the step before the first of a march of steps.
 func (g *slowGroup) gatherFirst(r *rotation, flags uint32) {
 	for ; flags != 0; flags &= flags - 1 {
-		l := bits.TrailingZeros32(flags)
-		lane := &r.lane[l]
+		lane := &r.lane[bits.TrailingZeros32(flags)]
 		x, y := r.pair[0].a, r.pair[1].a
-		lane.gatherParts(0, newParts(0, 0, x[0], x[1], lane.cuts), newParts(0, 0, y[0], y[1], lane.cuts), r.stepNorms[0].First)
+		first, second := groundedStep{a: x[0], next: x[1]}, groundedStep{a: y[0], next: y[1]}
+		lane.gatherParts(0, newParts(first, lane.cuts), newParts(second, lane.cuts), r.stepNorms[0].First)
 	}
 }
