@@ -272,7 +272,9 @@ func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, 
 			top := 0.0
 			for k := range f.Sides {
 				side := &f.Sides[k]
-				top = max(top, math.FMA(side.XX[l], xx, math.FMA(side.XY[l], xy, float64(side.YY[l]*yy))))
+				if x := math.FMA(side.XX[l], xx, math.FMA(side.XY[l], xy, float64(side.YY[l]*yy))); x > top {
+					top = x
+				}
 			}
 			if top > float64(r*r) {
 				out[i] |= 1 << l

@@ -71,3 +71,22 @@ func TestScreenSteps(t *testing.T) {
 		t.Errorf("%d flags of %d, so that the test shows nothing", count, len(lines)*Lanes)
 	}
 }
+
+// TestScreenOrbitsOverflow: a side whose sum is infinite less infinite says
+// nothing, in any kernel, and the other sides still count.
+func TestScreenOrbitsOverflow(t *testing.T) {
+	f, x, y := new(OrbitFence), make([]Mark, 1), make([]Mark, 1)
+	for l := range Lanes {
+		f.Inner[l] = 1
+		f.Sides[0].XX[l], f.Sides[0].XY[l], f.Sides[0].YY[l] = 1, -2, 1
+		f.Sides[1].XX[l], f.Sides[1].XY[l], f.Sides[1].YY[l] = 1, 1, 1
+		x[0].X[l], y[0].X[l] = 1e200, 1e200
+	}
+	for _, name := range Names() {
+		use(t, name)
+		flags := make([]uint32, 1)
+		if ScreenOrbits(f, x, y, make([]Line, 1), flags, ^uint32(0)); flags[0] != ^uint32(0) {
+			t.Errorf("%s: flags %#x, want all", name, flags[0])
+		}
+	}
+}
