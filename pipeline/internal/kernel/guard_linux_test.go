@@ -63,7 +63,7 @@ type placed struct {
 	flags  [][]uint32
 }
 
-// runPlaced calls every function of the package.
+// runPlaced calls every function of the package but those of the plane.
 func (c *testCase) runPlaced(p *placing) *placed {
 	n := len(c.ground)
 	steps, strides := max(n-2, 0), (n-1)/(len(c.shares)-1)
@@ -101,21 +101,45 @@ func (c *testCase) runPlaced(p *placing) *placed {
 	}
 }
 
+// placed returns a copy of a case with everything placed.
+func (c *planeCase) placed(p *placing) *planeCase {
+	d := &planeCase{
+		start: c.start, outline: one(p, Outline{}), compass: one(p, *c.compass), twice: one(p, *c.twice), form: one(p, *c.form),
+		rays: one(p, *c.rays), fence: one(p, *c.fence), orbits: one(p, *c.orbits), set: one(p, Above{}),
+		points: copied(p, c.points), rowsX: copied(p, c.rowsX), rowsY: copied(p, c.rowsY),
+		marksX: copied(p, c.marksX), marks: copied(p, c.marks), lines: copied(p, c.lines),
+		ground: copied(p, c.ground), compasses: one(p, *c.compasses), displaced: one(p, *c.displaced),
+		limit: c.limit, want: c.want, sweep: one(p, Sweep{}),
+		rows: place[Row](p, len(c.points)), level: place[Row](p, len(c.points)),
+	}
+	for i := range d.flags {
+		d.flags[i], d.sums[i] = place[uint32](p, len(c.points)), place[Mark](p, len(c.points))
+	}
+	return d
+}
+
 // TestGuardPages runs every function of every kernel with all that it is given
 // against pages that fault when they are read or written, before and after, and
 // finds the results that plain space gives.
 func TestGuardPages(t *testing.T) {
 	for _, n := range []int{1, 2, 3, 4, 5, 6, 7, 8, 9, 13, 16, 17, 31, 33, 64, 65, 66, 67, 130} {
 		c := newCase(uint64(n), n)
+		plane := newPlane(n, c.want, normal(uint64(n)))
+		run := func(where string) string {
+			p := &placing{t, where}
+			d := plane.placed(p)
+			d.run()
+			return fmt.Sprint(*c.runPlaced(p), d.made())
+		}
 		use(t, Portable)
-		want := fmt.Sprint(*c.runPlaced(&placing{t, "plain"}))
+		want := run("plain")
 		for _, name := range Names() {
 			for _, where := range []string{"before", "after"} {
 				t.Run(fmt.Sprintf("%s/%s/%d", name, where, n), func(t *testing.T) {
 					use(t, name)
 					// A fault then fails this test instead of ending the program.
 					defer debug.SetPanicOnFault(debug.SetPanicOnFault(true))
-					if got := fmt.Sprint(*c.runPlaced(&placing{t, where})); got != want {
+					if run(where) != want {
 						t.Error("results differ from those in plain space")
 					}
 				})
