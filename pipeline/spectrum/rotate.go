@@ -70,7 +70,7 @@ func (s *Solver) RotD(first, second, sdFirst, sdSecond []float64) (rotd50, rotd1
 	if len(sdFirst) != s.oscillators || len(sdSecond) != s.oscillators {
 		panic("spectrum: number of known SD is not the number of oscillators")
 	}
-	if s.method != NigamJennings || !inRange(sdFirst, sdSecond) {
+	if s.method != NigamJennings {
 		return s.solveDirections(first, second)
 	}
 	rotd50, rotd100 = make([]float64, s.oscillators), make([]float64, s.oscillators)
@@ -84,7 +84,11 @@ func (s *Solver) RotD(first, second, sdFirst, sdSecond []float64) (rotd50, rotd1
 	}
 	r.prepare(s.strides)
 	exponent := r.pair[0].exponent
-	r.first, r.second = s.unscaled(r.first, sdFirst, exponent), s.unscaled(r.second, sdSecond, exponent)
+	if inRange(sdFirst, sdSecond) {
+		r.first, r.second = s.unscaled(r.first, sdFirst, exponent), s.unscaled(r.second, sdSecond, exponent)
+	} else { // the scaled motions have D with all digits
+		r.first, r.second = s.unscaled(r.first, s.SD(nil, r.pair[0].a), 0), s.unscaled(r.second, s.SD(nil, r.pair[1].a), 0)
+	}
 	for i := range s.slow {
 		s.slow[i].rotate(r, rotd50, rotd100)
 	}
