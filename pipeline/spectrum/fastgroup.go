@@ -31,6 +31,9 @@ func newFastGroups(list []fast) []fastGroup {
 	return groups
 }
 
+// live flags the lanes of members.
+func (g *fastGroup) live() uint32 { return ^uint32(0) >> (lanes - len(g.members)) }
+
 // solve puts the D of the members into dst, in units of the motion.
 func (g *fastGroup) solve(dst []float64, m *motion) {
 	g.march(m)
@@ -64,7 +67,7 @@ func (g *fastGroup) march(m *motion) {
 // refine sets best to the greatest |u| of the steps, beginning with the blocks
 // of the greatest free vibration, which usually settle the others.
 func (g *fastGroup) refine(m *motion) {
-	live := ^uint32(0) >> (lanes - len(g.members))
+	live := g.live()
 	marks := m.marks[:m.blocks()]
 	kernel.GreatestPeaks(m.top, marks)
 	*m.screen = kernel.Screen{}

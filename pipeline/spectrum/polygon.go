@@ -15,8 +15,9 @@ const half = Directions / 2
 // bounds L(θ) of D(θ), and which points can still matter to the median of D and
 // to its maximum.
 //
-// Let floor be a number that more than half of the bounds exceed, 91 of 180.
-// Then the lower of the middle two values of D exceeds it too, and |u| up to it
+// Let floor be a number that D exceeds in more than half of the directions, 91 of
+// 180, because L does or because begin knows it. Then the lower of the middle two
+// values of D exceeds it, and |u| up to it
 // changes neither that value nor any above it. So a point matters only if in
 // some direction it is farther out than max(L(θ), floor). The fence surrounds a
 // region without such points.
@@ -41,13 +42,15 @@ func (p *polygon) begin(first, second float64) {
 // sweep is the angle between the directions of a kernel.Sweep, in degrees.
 const sweep = Directions / kernel.Sweeps
 
-// settle takes in the greatest distances of a set of points in the directions of
-// a sweep, in units of unit. Between two of them, by the same weights as of a fence's corners, the
-// distance h is at least what makes that of a neighbour, beyond which is another,
+// settle takes in the greatest distances h of a set of points in the directions of
+// a sweep, in units of unit. Let n be a direction of it, m the one before, and θ a
+// direction i degrees beyond n. n is made of θ and m with sines for weights, and no
+// distance exceeds the sum of those of which its direction is made:
 //
-//	h(neighbour)·sin(sweep) <= h·sin(beyond to neighbour) + h(beyond)·sin(neighbour to h)
+//	h(n)·sin(sweep + i) <= h(θ)·sin(sweep) + h(m)·sin(i)
 //
-// since no distance exceeds the sum of those of which its direction is made.
+// which bounds h(θ) from below, and likewise from the other side. Rounding is taken
+// off.
 func (p *polygon) settle(tops *kernel.Sweep, l int, unit float64) {
 	var h [kernel.Sweeps + 3]float64 // from the last, and two more at the end
 	for k := range h {
@@ -59,13 +62,19 @@ func (p *polygon) settle(tops *kernel.Sweep, l int, unit float64) {
 		reach[0] = max(reach[0], at)
 		for i := 1; i < sweep; i++ {
 			w := &sweepWeights[i]
-			reach[i] = max(reach[i], float64(w.near*at)-float64(w.far*before), float64(w.nearEnd*next)-float64(w.farEnd*after))
+			reach[i] = max(reach[i],
+				lessRounding(float64(w.near*at), float64(w.far*before)),
+				lessRounding(float64(w.nearEnd*next), float64(w.farEnd*after)))
 		}
 	}
 	p.repeat()
 	p.raise(10)
 	p.enclose()
 }
+
+// lessRounding returns x − y, both not negative, less what rounding of them can
+// have added.
+func lessRounding(x, y float64) float64 { return (x - y) - float64(0x1p-48*(x+y)) }
 
 // repeat copies the last direction to those beyond it.
 func (p *polygon) repeat() {
@@ -181,11 +190,12 @@ func (p *polygon) above(x float64) int {
 //	√((x·cos θ + y·sin θ)² + (vx·cos θ + vy·sin θ)²)
 //
 // from that line, the square of which is a constant with a cosine and a sine of
-// 2θ.
+// 2θ. The constant is raised by what rounding can take from the square where it
+// is small.
 func (p *polygon) surrounds(x, vx, y, vy float64, from, to kernel.Point) bool {
 	first, second := float64(x*x)+float64(vx*vx), float64(y*y)+float64(vy*vy)
 	p.form = kernel.Form{
-		Middle: float64(0.5 * (first + second)), Cosine: float64(0.5 * (first - second)),
+		Middle: float64((0.5 + 0x1p-48) * (first + second)), Cosine: float64(0.5 * (first - second)),
 		Sine: float64(x*y) + float64(vx*vy), Floor: p.floor, Points: [2]kernel.Point{from, to},
 	}
 	return !p.reach.Exceeds(&compass, &twice, &p.form)

@@ -75,7 +75,11 @@ func (s *Solver) RotD(first, second, sdFirst, sdSecond []float64) (rotd50, rotd1
 	}
 	rotd50, rotd100 = make([]float64, s.oscillators), make([]float64, s.oscillators)
 	r := s.pairs.Get().(*rotation)
-	defer s.pairs.Put(r)
+	defer func() {
+		if r.isLight() {
+			s.pairs.Put(r)
+		}
+	}()
 	if known, done := r.load(first, second); done {
 		for i := range rotd50 {
 			rotd50[i], rotd100[i] = known, known
@@ -122,8 +126,10 @@ func (s *Solver) unscaled(dst, sd []float64, exponent int) []float64 {
 	return dst
 }
 
-// solveDirections is RotD by the D of every direction.
+// solveDirections is RotD by the D of every direction, of motions scaled by a power
+// of two so that turning them cannot overflow.
 func (s *Solver) solveDirections(first, second []float64) (rotd50, rotd100 []float64) {
+	first, second, exponent := scaledPair(first, second)
 	all := make([][]float64, Directions)
 	for k := range all {
 		all[k] = s.SD(nil, turned(first, second, k))
@@ -135,9 +141,23 @@ func (s *Solver) solveDirections(first, second []float64) (rotd50, rotd100 []flo
 			d[k] = all[k][i]
 		}
 		slices.Sort(d)
-		rotd50[i], rotd100[i] = middle(d), d[Directions-1]
+		rotd50[i], rotd100[i] = math.Ldexp(middle(d), exponent), math.Ldexp(d[Directions-1], exponent)
 	}
 	return rotd50, rotd100
+}
+
+// scaledPair returns two components divided by a power of two 2^exponent that
+// brings the greatest sample into [1/2, 1), which is exact; without a finite one
+// that is not 0 they are as they were.
+func scaledPair(first, second []float64) (x, y []float64, exponent int) {
+	top := max(greatest(first), greatest(second))
+	if !(top > 0) {
+		return first, second, 0
+	}
+	var a, b motion
+	a.scale(first, top)
+	b.scale(second, top)
+	return a.a, b.a, a.exponent
 }
 
 // middle returns the median of one number a direction, in order.

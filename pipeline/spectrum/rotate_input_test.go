@@ -102,3 +102,24 @@ func TestRotDPanics(t *testing.T) {
 		})
 	}
 }
+
+// TestRotDOfHugeMotions: turning motions near the greatest number must not
+// overflow, whichever the method.
+func TestRotDOfHugeMotions(t *testing.T) {
+	x, y := make([]float64, 40), make([]float64, 40)
+	for i := range x {
+		x[i] = 1.5 * math.Cos(float64(i)*0.7)
+		y[i] = 0.9 * x[i]
+	}
+	for _, method := range []Method{NigamJennings, NewmarkAverage} {
+		s, err := NewSolver(method, 0.01, []Oscillator{{0.03, 0.05}})
+		if err != nil {
+			t.Fatal(err)
+		}
+		want50, want100 := rotd(t, s, x, y)
+		got50, got100 := rotd(t, s, scaledBy(x, 0x1p1023/2), scaledBy(y, 0x1p1023/2))
+		if off(math.Ldexp(got50[0], -1022), want50[0]) > 1e-12 || off(math.Ldexp(got100[0], -1022), want100[0]) > 1e-12 {
+			t.Errorf("%v: %v and %v, want %v and %v times 2^1022", method, got50[0], got100[0], want50[0], want100[0])
+		}
+	}
+}

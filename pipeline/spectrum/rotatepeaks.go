@@ -17,15 +17,11 @@ func RotDPeaks(stepS float64, first, second []float64) (rotd50, rotd100 GroundPe
 	if len(first) != len(second) {
 		panic("spectrum: components of a pair differ in length")
 	}
-	top := max(greatest(first), greatest(second))
-	if math.IsNaN(top) {
+	first, second, exponent := scaledPair(first, second) // squares of lengths must not overflow
+	if math.IsNaN(greatest(first) + greatest(second)) {
 		nan := GroundPeaks{math.NaN(), math.NaN(), math.NaN()}
 		return nan, nan
 	}
-	var x, y motion // scaled, so that squares of lengths neither overflow nor underflow
-	x.scale(first, top)
-	y.scale(second, top)
-	first, second = x.a, y.a
 	p := newGroundPath(first, second)
 	rotd50.PGA, rotd100.PGA = p.peaks(p.a, nil, nil)
 	rotd50.PGV, rotd100.PGV = p.peaks(p.v, (*groundStep).peakVelocity, func(k int) float64 {
@@ -35,9 +31,9 @@ func RotDPeaks(stepS float64, first, second []float64) (rotd50, rotd100 GroundPe
 		return max(reach(first[k], second[k]), reach(first[k+1], second[k+1]))
 	})
 	for _, g := range []*GroundPeaks{&rotd50, &rotd100} {
-		g.PGA = math.Ldexp(g.PGA, x.exponent)
-		g.PGV = math.Ldexp(float64(g.PGV*stepS), x.exponent)
-		g.PGD = math.Ldexp(float64(g.PGD*stepS)*stepS, x.exponent)
+		g.PGA = math.Ldexp(g.PGA, exponent)
+		g.PGV = math.Ldexp(float64(g.PGV*stepS), exponent)
+		g.PGD = math.Ldexp(float64(g.PGD*stepS)*stepS, exponent)
 	}
 	return rotd50, rotd100
 }

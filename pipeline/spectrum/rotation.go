@@ -90,6 +90,16 @@ func newRotation() *rotation {
 	}
 }
 
+// isLight reports whether the work space is worth keeping: motions that go round
+// for long, of oscillators short against the step, take pieces by the million.
+func (r *rotation) isLight() bool {
+	pieces := 0
+	for l := range r.lane {
+		pieces += cap(r.lane[l].pieces)
+	}
+	return pieces <= 1<<17
+}
+
 // load is that of a motion for both, scaled alike.
 func (r *rotation) load(first, second []float64) (known float64, done bool) {
 	top := max(greatest(first), greatest(second)) // NaN where one is
@@ -143,6 +153,37 @@ func (r *rotation) begin(l, index int) *rotatedLane {
 	lane.polygon.begin(r.first[index], r.second[index])
 	lane.pieces, lane.wide, lane.every, lane.fenced, lane.unit = lane.pieces[:0], 0, 1, false, 1
 	return lane
+}
+
+// sweptBlocks is how many blocks of a group are swept before any is looked at
+// closely: enough to know roughly what its motions reach in all directions.
+const sweptBlocks = 10
+
+// pairGroup is a group of oscillators whose marks have the peaks of both motions.
+type pairGroup interface {
+	live() uint32
+	limitPair(r *rotation)                   // sets the screen of blocks from floors
+	sweep(r *rotation, b int)                // sweeps the samples of a block
+	gather(r *rotation, b int, flags uint32) // collects pieces of a block
+}
+
+// collect gathers the pieces of a group that can matter. lines is what blocks are
+// screened with.
+func (r *rotation) collect(g pairGroup, lines []kernel.Line) {
+	*r.pair[0].screen = kernel.Screen{}
+	g.limitPair(r)
+	order := r.inOrder(lines, g.live())
+	*r.sweep = kernel.Sweep{}
+	for _, b := range order[:min(sweptBlocks, len(order))] {
+		g.sweep(r, b)
+	}
+	r.settle(g.live())
+	for _, b := range order {
+		g.limitPair(r)
+		flags := r.passing(b, lines) & g.live()
+		g.gather(r, b, flags)
+		r.absorb(flags)
+	}
 }
 
 // inOrder lists the blocks that can matter, those first that have the greatest

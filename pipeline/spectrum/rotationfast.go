@@ -21,20 +21,7 @@ func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	}
 	marks := r.marks()
 	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], true)
-	live := ^uint32(0) >> (lanes - len(g.members))
-	g.limitPair(r)
-	order := r.inOrder(r.blockNorms, live)
-	*r.sweep = kernel.Sweep{}
-	for _, b := range order[:min(sweptBlocks, len(order))] {
-		g.sweep(r, b, live)
-	}
-	r.settle(live)
-	for _, b := range order {
-		g.limitPair(r)
-		flags := r.passing(b, r.blockNorms) & live
-		g.gather(r, b, flags)
-		r.absorb(flags)
-	}
+	r.collect(g, r.blockNorms)
 	for l := range g.members {
 		o := &g.members[l]
 		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
@@ -63,11 +50,11 @@ func (g *fastGroup) limitPair(r *rotation) {
 }
 
 // sweep marches a block of both motions again and sweeps their samples.
-func (g *fastGroup) sweep(r *rotation, b int, live uint32) {
+func (g *fastGroup) sweep(r *rotation, b int) {
 	from, to := r.pair[0].block(b)
 	n := to - from
 	for _, m := range r.pair {
-		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], m.states[:n], live)
+		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], m.states[:n], g.live())
 		kernel.Displace(m.rows[:n], r.displaced, m.states[:n], m.a[from:to+1])
 	}
 	r.sweep.Add(&sweepCompass, r.pair[0].rows[:n], r.pair[1].rows[:n])

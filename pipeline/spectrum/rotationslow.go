@@ -10,7 +10,6 @@ import (
 // rotate puts RotD50 and RotD100 of the members into dst50 and dst100, in units
 // of the motion.
 func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
-	live := ^uint32(0) >> (lanes - len(g.members))
 	for l := range g.members {
 		g.begin(r, l)
 	}
@@ -22,19 +21,7 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	if g.stride != nil {
 		lines = r.strideNorms[g.level]
 	}
-	g.limitPair(r)
-	order := r.inOrder(lines, live)
-	*r.sweep = kernel.Sweep{}
-	for _, b := range order[:min(sweptBlocks, len(order))] {
-		g.sweep(r, b, live)
-	}
-	r.settle(live)
-	for _, b := range order {
-		g.limitPair(r)
-		flags := r.passing(b, lines) & live
-		g.gather(r, b, flags)
-		r.absorb(flags)
-	}
+	r.collect(g, lines)
 	for l := range g.members {
 		o := &g.members[l]
 		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
@@ -101,19 +88,15 @@ func (g *slowGroup) limitPair(r *rotation) {
 	}
 }
 
-// sweptBlocks is how many blocks of a group are swept before others are looked at
-// closely: enough to know roughly what its motions reach in all directions.
-const sweptBlocks = 10
-
 // sweep marches a block of both motions again and sweeps their samples.
-func (g *slowGroup) sweep(r *rotation, b int, live uint32) {
+func (g *slowGroup) sweep(r *rotation, b int) {
 	from, to := r.pair[0].block(b)
 	if g.stride == nil {
 		from = max(from, 1)
 	}
 	rows := to - from + 1
 	for _, m := range r.pair {
-		g.trace(m, b, from, m.rows[:rows], live)
+		g.trace(m, b, from, m.rows[:rows], g.live())
 	}
 	r.sweep.Add(&sweepCompass, r.pair[0].rows[:rows], r.pair[1].rows[:rows])
 }
@@ -172,7 +155,7 @@ func (g *slowGroup) setFence(r *rotation, flags uint32, a float64) {
 	}
 }
 
-// gatherPieces collects the pieces of so many steps that are not within inner,
+// gatherPieces collects the pieces of so many steps that are not within the fence,
 // with a the greatest length of the ground acceleration in the block.
 func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, a float64, flags uint32) {
 	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]

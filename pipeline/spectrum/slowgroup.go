@@ -7,8 +7,8 @@ import (
 	"swaybook/pipeline/internal/kernel"
 )
 
-// slowGroup is a number of slow oscillators, one to a lane. Lanes without one
-// rest at zero.
+// slowGroup is a number of slow oscillators, one to a lane. Lanes without one hold
+// numbers of no account.
 //
 // With a stride, the marks of all blocks but the last hold displacement and
 // velocity, and their peaks |u| between strides; the last block is marched step

@@ -156,24 +156,28 @@ func ScreenOrbits(f *OrbitFence, x, y []Mark, lines []Line, flags []uint32, want
 	}
 }
 
-// JoinPeaks sets the peak of each mark of sums to First² + Second² of the peaks
-// of a pair of marks, or to their sum where they are squares. It panics if
-// lengths differ. sums may be one of the others.
+// JoinPeaks sets the peak of each mark of sums to the sum of the squares of the
+// peaks of a pair of marks, or of the peaks where they are squares, and a number so
+// small that it only keeps the sum above 0. It panics if lengths differ. sums may
+// be one of the others.
 func JoinPeaks(sums, first, second []Mark, squares bool) {
 	checkLines(len(sums), len(first), len(second))
 	for i := range sums {
 		x, y, sum := &first[i].Peak, &second[i].Peak, &sums[i].Peak
 		if squares {
 			for l := range sum {
-				sum[l] = x[l] + y[l]
+				sum[l] = (x[l] + y[l]) + aboveZero
 			}
 			continue
 		}
 		for l := range sum {
-			sum[l] = math.FMA(x[l], x[l], float64(y[l]*y[l]))
+			sum[l] = math.FMA(x[l], x[l], float64(y[l]*y[l])) + aboveZero
 		}
 	}
 }
+
+// aboveZero is the least normal number.
+const aboveZero = 0x1p-1022
 
 func widenGeneric(o *Outline, c *Compass, points *Point, n int) {
 	list := unsafe.Slice(points, n)

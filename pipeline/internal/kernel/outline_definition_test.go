@@ -200,6 +200,13 @@ func TestJoinPeaksIsItsDefinition(t *testing.T) {
 			plainly(t, "sum in lane", l, c.sums[1][i].Peak[l], x+y)
 		}
 	}
+	var none [2]Mark
+	for _, squares := range []bool{false, true} {
+		if JoinPeaks(none[:1], none[1:], none[1:], squares); !(none[0].Peak[3] > 0 && none[0].Peak[3] < 1e-300) {
+			t.Errorf("peaks of nothing, squares %v: %g", squares, none[0].Peak[3])
+		}
+		none[0] = Mark{}
+	}
 	JoinPeaks(c.marksX, c.marksX, c.marks, false)
 	for i := range c.marks {
 		if c.marksX[i].Peak != c.sums[0][i].Peak {
