@@ -33,6 +33,17 @@ func (g Grid) Hash() string {
 	return hex.EncodeToString(sum[:])
 }
 
+// CheckSolver refuses a generation that another version of the solver computed:
+// what this program computes or reads cannot stand beside it. The error wraps
+// ErrOtherGeneration and says what to do.
+func (g Generation) CheckSolver(version string) error {
+	if g.Solver == version {
+		return nil
+	}
+	return fmt.Errorf("%w: its spectra come from solver %q, this program has %q; ingest the files into a new store with --store",
+		ErrOtherGeneration, g.Solver, version)
+}
+
 // Recipe is a declared list of conditioning steps.
 type Recipe struct {
 	Name  string

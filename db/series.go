@@ -13,14 +13,16 @@ import (
 	"github.com/klauspost/compress/zstd"
 )
 
-// The layouts of samples. The first byte of a series names its own.
+// The layouts of samples. The first byte of a series names its own. 1 and 2 were
+// other layouts once: a number is not used again, so that no series is taken for
+// a damaged one of another layout.
 const (
 	// layoutDecimal: samples (k/10^d)·u in a unit of u m/s², d the same for all, as
 	// files of fixed decimals hold them.
-	layoutDecimal = 1
+	layoutDecimal = 4
 	// layoutScientific: samples ±(m/10^j)·u, m of so many digits at most and a j for
 	// each, as files with exponents hold them.
-	layoutScientific = 2
+	layoutScientific = 5
 	// layoutPlanes: the bytes of the doubles, lowest first, each place of all
 	// samples together and compressed by itself.
 	layoutPlanes = 3

@@ -1,6 +1,7 @@
 package db
 
 import (
+	"fmt"
 	"math"
 	"math/rand/v2"
 	"slices"
@@ -111,6 +112,16 @@ func TestTextSamplesRoundTrip(t *testing.T) {
 	for _, layout := range []byte{layoutDecimal, layoutScientific, layoutPlanes} {
 		if layouts[layout] < 100 {
 			t.Errorf("seed %d: layout %d occurs %d times, want it tested more", seed, layout, layouts[layout])
+		}
+	}
+}
+
+// A series of a former layout is no damaged one of another.
+func TestFormerLayoutsAreUnknown(t *testing.T) {
+	for _, layout := range []byte{0, 1, 2, 6} {
+		_, err := DecodeSamples([]byte{layout, 3, 4}, 10, "")
+		if want := fmt.Sprintf("unknown layout %d", layout); err == nil || !strings.Contains(err.Error(), want) {
+			t.Errorf("layout %d: %v, want %q", layout, err, want)
 		}
 	}
 }

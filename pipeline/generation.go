@@ -27,14 +27,13 @@ func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid) (db.Generat
 		}
 		return tx.CreateGeneration(ctx, asDelivered, grid, spectrum.Version)
 	}
+	if err := g.CheckSolver(spectrum.Version); err != nil {
+		return g, err
+	}
 	if !filled(asked, g.Grid).Equal(g.Grid) {
 		return g, fmt.Errorf("%w: the store's grid was fixed by its first ingest at %s; leave out --periods and --dampings, "+
 			"query other periods and dampings (they are computed from the stored samples), or make another store with --store",
 			db.ErrOtherGeneration, describe(g.Grid))
-	}
-	if g.Solver != spectrum.Version {
-		return g, fmt.Errorf("%w: its spectra come from solver %q, this program has %q; ingest the files into a new store with --store",
-			db.ErrOtherGeneration, g.Solver, spectrum.Version)
 	}
 	return g, nil
 }

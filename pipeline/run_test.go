@@ -284,6 +284,12 @@ func TestTheGridIsFixedByTheFirstRun(t *testing.T) {
 	}
 	opts.Grid = db.Grid{}
 	run(t, store, opts) // none asked for: the store's own
+	if _, err := client(t, store).ExecContext(t.Context(), `UPDATE generation SET solver = 'older'`); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := Run(t.Context(), store, opts); !errors.Is(err, db.ErrOtherGeneration) || !strings.Contains(err.Error(), `solver "older"`) {
+		t.Errorf("another solver: %v", err)
+	}
 	opts.Grid.Dampings = []float64{-1}
 	opts.Grid.PeriodsS = []float64{1}
 	if _, err := Run(t.Context(), newStore(t), opts); err == nil {

@@ -81,7 +81,7 @@ func (q DemandQuestion) Ask(ctx context.Context, store *db.Store) (*DemandAnswer
 		return nil, err
 	}
 	var answer *DemandAnswer
-	err = store.View(ctx, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, func(snapshot *db.Snapshot) error {
 		answer, err = q.answer(ctx, snapshot)
 		return err
 	})

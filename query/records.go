@@ -70,7 +70,7 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 		return nil, err
 	}
 	answer := &RecordsAnswer{}
-	err = store.View(ctx, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, func(snapshot *db.Snapshot) error {
 		picked, err := pick(ctx, snapshot, selection, db.AllDetails)
 		if picked == nil {
 			return err

@@ -11,6 +11,16 @@ import (
 	"swaybook/pipeline/spectrum"
 )
 
+// view runs f on a snapshot of a store that this program's solver computed.
+func view(ctx context.Context, store *db.Store, f func(*db.Snapshot) error) error {
+	return store.View(ctx, func(snapshot *db.Snapshot) error {
+		if err := snapshot.Generation.CheckSolver(spectrum.Version); err != nil {
+			return err
+		}
+		return f(snapshot)
+	})
+}
+
 // source is where ordinates of a damping come from: one snapshot of a store.
 type source struct {
 	snapshot *db.Snapshot

@@ -42,7 +42,7 @@ func (q SpectrumQuestion) Ask(ctx context.Context, store *db.Store) (*SpectrumAn
 		return nil, err
 	}
 	var answer *SpectrumAnswer
-	err = store.View(ctx, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, func(snapshot *db.Snapshot) error {
 		answer, err = q.answer(ctx, snapshot)
 		return err
 	})

@@ -328,3 +328,34 @@ func TestOrderOfStoring(t *testing.T) {
 		}
 	}
 }
+
+// TestOtherSolver: a store of another version of the solver is refused as ingest
+// refuses it, whatever is asked; it is not taken for a damaged one.
+func TestOtherSolver(t *testing.T) {
+	store := newStore(t, handGrid, handRecords())
+	alter(t, store, `UPDATE generation SET solver = 'older'`)
+	alter(t, store, `UPDATE series SET data = x'0203'`)
+	questions := map[string]func() error{
+		"spectrum": func() error {
+			_, err := SpectrumQuestion{Damping: 0.07}.Ask(t.Context(), store)
+			return err
+		},
+		"demand": func() error {
+			_, err := DemandQuestion{Structure: Structure{PeriodS: 1, Damping: 0.05}}.Ask(t.Context(), store)
+			return err
+		},
+		"records": func() error {
+			_, err := RecordsQuestion{}.Ask(t.Context(), store)
+			return err
+		},
+		"export": func() error {
+			_, err := ExportQuestion{}.Write(t.Context(), store, io.Discard)
+			return err
+		},
+	}
+	for name, ask := range questions {
+		if err := ask(); !errors.Is(err, db.ErrOtherGeneration) || !strings.Contains(err.Error(), `solver "older"`) {
+			t.Errorf("%s: %v, want ErrOtherGeneration with the solver", name, err)
+		}
+	}
+}

@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"database/sql"
 	"flag"
 	"fmt"
 	"math"
@@ -11,6 +12,7 @@ import (
 	"time"
 
 	"swaybook/db"
+	"swaybook/pipeline/spectrum"
 )
 
 var update = flag.Bool("update", false, "rewrite the golden files")
@@ -92,7 +94,7 @@ func newStore(t testing.TB, grid db.Grid, records []inventedRecord) *db.Store {
 		if err != nil {
 			return err
 		}
-		g, err := tx.CreateGeneration(ctx, db.Recipe{Name: "as-delivered", Steps: "[]"}, grid, "invented")
+		g, err := tx.CreateGeneration(ctx, db.Recipe{Name: "as-delivered", Steps: "[]"}, grid, spectrum.Version)
 		if err != nil {
 			return err
 		}
@@ -107,6 +109,19 @@ func newStore(t testing.TB, grid db.Grid, records []inventedRecord) *db.Store {
 		t.Fatal(err)
 	}
 	return store
+}
+
+// alter changes the store as another SQLite client would.
+func alter(t *testing.T, store *db.Store, statement string, args ...any) {
+	t.Helper()
+	client, err := sql.Open("sqlite", store.Path())
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer client.Close()
+	if _, err := client.ExecContext(t.Context(), statement, args...); err != nil {
+		t.Fatal(err)
+	}
 }
 
 func (r inventedRecord) put(ctx context.Context, tx *db.Tx, run int64, g db.Generation) error {
