@@ -8,21 +8,23 @@ import (
 
 // Pair is a record's two horizontals, h1 and h2.
 type Pair struct {
-	RecordID int64
-	Code     string // the record's
-	// First and Second are the ids of the components.
-	First, Second           int64
-	FirstStepS, SecondStepS float64
-	// BetweenDeg is the azimuth of the second less that of the first, in degrees,
-	// where both are known.
-	BetweenDeg   float64
-	BetweenKnown bool
+	RecordID      int64
+	Code          string // the record's
+	First, Second PairComponent
+}
+
+// PairComponent is what decides of a component whether it makes a pair.
+type PairComponent struct {
+	ID           int64
+	StepS        float64
+	AzimuthDeg   float64 // where known
+	AzimuthKnown bool
 }
 
 // Unrotated returns the pairs of the generation's records that lack what is
 // computed over all directions, in the order in which the records were stored.
-func (s *Snapshot) Unrotated(ctx context.Context) ([]Pair, error) {
-	return unrotated(ctx, s.tx, s.Generation.ID, "")
+func (s *Store) Unrotated(ctx context.Context, generationID int64) ([]Pair, error) {
+	return unrotated(ctx, s.read, generationID, "")
 }
 
 // IsUnrotated reports whether the record still holds this very pair, and lacks
@@ -35,8 +37,9 @@ func (t *Tx) IsUnrotated(ctx context.Context, generationID int64, p Pair) (bool,
 // unrotated looks for each record's rotated spectrum first, which is one step in
 // an index and all that there is to do in a store that is complete.
 func unrotated(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Pair, error) {
-	rows, err := q.QueryContext(ctx, `SELECT r.id, r.code, a.id, b.id, a.step_s, b.step_s,
-			coalesce(b.azimuth_deg - a.azimuth_deg, 0), b.azimuth_deg - a.azimuth_deg IS NOT NULL
+	rows, err := q.QueryContext(ctx, `SELECT r.id, r.code,
+			a.id, a.step_s, coalesce(a.azimuth_deg, 0), a.azimuth_deg IS NOT NULL,
+			b.id, b.step_s, coalesce(b.azimuth_deg, 0), b.azimuth_deg IS NOT NULL
 		FROM record r
 		CROSS JOIN component a ON a.record_id = r.id AND a.role = '`+RoleH1+`'
 		CROSS JOIN component b ON b.record_id = r.id AND b.role = '`+RoleH2+`'
@@ -47,7 +50,8 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)
 	}
 	pairs, err := collect(rows, func(p *Pair) []any {
-		return []any{&p.RecordID, &p.Code, &p.First, &p.Second, &p.FirstStepS, &p.SecondStepS, &p.BetweenDeg, &p.BetweenKnown}
+		a, b := &p.First, &p.Second
+		return []any{&p.RecordID, &p.Code, &a.ID, &a.StepS, &a.AzimuthDeg, &a.AzimuthKnown, &b.ID, &b.StepS, &b.AzimuthDeg, &b.AzimuthKnown}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)
@@ -71,8 +75,8 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 		return first, second, fmt.Errorf("begin reading: %w", explain(err))
 	}
 	defer tx.Rollback()
-	if first, err = readMotion(ctx, tx, g, p.First); err == nil {
-		second, err = readMotion(ctx, tx, g, p.Second)
+	if first, err = readMotion(ctx, tx, g, p.First.ID); err == nil {
+		second, err = readMotion(ctx, tx, g, p.Second.ID)
 	}
 	if err != nil {
 		return first, second, fmt.Errorf("read pair of record %s: %w", p.Code, err)

@@ -17,12 +17,9 @@ func pairStore(t *testing.T) (*Store, Generation) {
 	return s, g
 }
 
-func unrotatedOf(t *testing.T, s *Store) (out []Pair) {
+func unrotatedOf(t *testing.T, s *Store, g Generation) []Pair {
 	t.Helper()
-	err := s.View(t.Context(), func(v *Snapshot) (err error) {
-		out, err = v.Unrotated(t.Context())
-		return err
-	})
+	out, err := s.Unrotated(t.Context(), g.ID)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -53,8 +50,8 @@ func putRotated(t *testing.T, s *Store, g Generation, recordID int64, base float
 
 func TestUnrotatedPairs(t *testing.T) {
 	s, g := pairStore(t)
-	pairs := unrotatedOf(t, s)
-	want := Pair{RecordID: 2, Code: "R1", First: 4, Second: 2, FirstStepS: 0.01, SecondStepS: 0.01, BetweenKnown: true}
+	pairs := unrotatedOf(t, s, g)
+	want := Pair{RecordID: 2, Code: "R1", First: PairComponent{4, 0.01, 30, true}, Second: PairComponent{2, 0.01, 30, true}}
 	if len(pairs) != 1 || pairs[0] != want {
 		t.Fatalf("unrotated = %+v, want %+v alone", pairs, want)
 	}
@@ -76,7 +73,7 @@ func TestUnrotatedPairs(t *testing.T) {
 	if err != nil {
 		t.Error(err)
 	}
-	if pairs := unrotatedOf(t, s); len(pairs) != 0 {
+	if pairs := unrotatedOf(t, s, g); len(pairs) != 0 {
 		t.Errorf("unrotated = %+v after rotation", pairs)
 	}
 }
@@ -114,7 +111,7 @@ func TestRotatedSpectraAreForgotten(t *testing.T) {
 			if stays := spectra > 0 && measures > 0; stays != test.stays || !stays && spectra+measures > 0 {
 				t.Errorf("%d spectra and %d measures, want them to stay: %v", spectra, measures, test.stays)
 			}
-			if lacking := len(unrotatedOf(t, s)) > 0; lacking == test.stays {
+			if lacking := len(unrotatedOf(t, s, g)) > 0; lacking == test.stays {
 				t.Errorf("unrotated: %v", lacking)
 			}
 		})
@@ -123,9 +120,9 @@ func TestRotatedSpectraAreForgotten(t *testing.T) {
 
 func TestIsUnrotated(t *testing.T) {
 	s, g := pairStore(t)
-	pair := unrotatedOf(t, s)[0]
+	pair := unrotatedOf(t, s, g)[0]
 	turned := pair
-	turned.BetweenDeg = 90
+	turned.Second.AzimuthDeg = 90
 	is := func(p Pair) (ok bool) {
 		update(t, s, func(ctx context.Context, tx *Tx) (err error) {
 			ok, err = tx.IsUnrotated(ctx, g.ID, p)
@@ -145,7 +142,7 @@ func TestIsUnrotated(t *testing.T) {
 // The stored decimals restore the doubles: a pair reads as it was written.
 func TestReadPairRestoresTheDoubles(t *testing.T) {
 	s, g := pairStore(t)
-	first, second, err := s.ReadPair(t.Context(), g, unrotatedOf(t, s)[0])
+	first, second, err := s.ReadPair(t.Context(), g, unrotatedOf(t, s, g)[0])
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -172,7 +169,7 @@ func TestDecodeNamesWhatIsDamaged(t *testing.T) {
 			t.Fatal(err)
 		}
 	}
-	first, second, err := s.ReadPair(t.Context(), g, unrotatedOf(t, s)[0])
+	first, second, err := s.ReadPair(t.Context(), g, unrotatedOf(t, s, g)[0])
 	if err != nil {
 		t.Fatal(err)
 	}

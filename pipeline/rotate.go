@@ -4,6 +4,8 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"math"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/pipeline/spectrum"
@@ -13,9 +15,9 @@ import (
 type Rotated struct {
 	Done, Total int
 	Record      string // its code
-	// Reason says why the pair could not be rotated, "reason: particulars"; it is
-	// "" where it was.
-	Reason string
+	// Reason says why the pair could not be rotated, in words by which such pairs
+	// can be counted; it is "" where it was. Detail has the particulars.
+	Reason, Detail string
 	// Assumed says that a right angle was assumed between the components, since an
 	// azimuth is unknown.
 	Assumed bool
@@ -27,11 +29,7 @@ type Rotated struct {
 // runs, or before a run that was stopped. A pair that cannot be rotated is
 // reported and left alone.
 func (w *writer) rotate(ctx context.Context) error {
-	var pairs []db.Pair
-	err := w.store.View(ctx, func(v *db.Snapshot) (err error) {
-		pairs, err = v.Unrotated(ctx)
-		return err
-	})
+	pairs, err := w.store.Unrotated(ctx, w.run.generation.ID)
 	if err != nil {
 		return err
 	}
@@ -45,7 +43,8 @@ func (w *writer) rotate(ctx context.Context) error {
 // rotation is a pair with what was computed of it over all directions.
 type rotation struct {
 	pair            db.Pair
-	err             error // why it could not be rotated
+	assumed         bool   // a right angle between the components
+	reason, detail  string // why it could not be rotated
 	median, maximum db.Spectra
 }
 
@@ -57,23 +56,40 @@ type rotator struct {
 }
 
 // process reads and rotates one pair. What is wrong with the pair is part of the
-// rotation; an error is the store's or the context's.
+// rotation, and found before it is read where that can be; an error is the store's
+// or the context's.
 func (r *rotator) process(ctx context.Context, p db.Pair) (rotation, error) {
 	rot := rotation{pair: p}
-	if p.FirstStepS != p.SecondStepS {
-		rot.err = fmt.Errorf("different time steps: %g s and %g s", p.FirstStepS, p.SecondStepS)
-		return rot, ctx.Err()
+	deg, assumed, err := spectrum.Between(horizontalOf(p.First), horizontalOf(p.Second))
+	if err != nil {
+		return rot.failed(err), ctx.Err()
 	}
+	rot.assumed = assumed
 	first, second, err := r.store.ReadPair(ctx, r.run.generation, p)
 	if err != nil {
 		return rot, err
 	}
-	rot.median, rot.maximum, rot.err = rotatePair(r.run.reader.solvers, p, first, second)
+	if rot.median, rot.maximum, err = rotatePair(r.run.reader.solvers, p.First.StepS, deg, first, second); err != nil {
+		return rot.failed(err), ctx.Err()
+	}
 	return rot, ctx.Err()
 }
 
+func horizontalOf(c db.PairComponent) spectrum.Horizontal {
+	return spectrum.Horizontal{StepS: c.StepS, AzimuthDeg: c.AzimuthDeg, AzimuthKnown: c.AzimuthKnown}
+}
+
+// failed is the rotation with the reason why there is none.
+func (rot rotation) failed(err error) rotation {
+	rot.reason = err.Error()
+	if e, ok := errors.AsType[*spectrum.PairError](err); ok {
+		rot.reason, rot.detail = e.Reason, e.Detail
+	}
+	return rot
+}
+
 // rotatePair computes the rotated spectra and measures of a pair of equal steps.
-func rotatePair(solvers *solvers, p db.Pair, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
+func rotatePair(solvers *solvers, stepS, betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
 	a, sdA, err := first.Decode()
 	if err != nil {
 		return median, maximum, fmt.Errorf("damaged in the store: %s: %w", db.RoleH1, err)
@@ -82,45 +98,32 @@ func rotatePair(solvers *solvers, p db.Pair, first, second db.StoredMotion) (med
 	if err != nil {
 		return median, maximum, fmt.Errorf("damaged in the store: %s: %w", db.RoleH2, err)
 	}
-	solver, err := solvers.get(p.FirstStepS)
+	solver, err := solvers.get(stepS)
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}
-	a, b, changedA, changedB, err := spectrum.Pair(a, b, betweenDeg(p))
+	pair, err := spectrum.NewPair(a, b, betweenDeg)
 	if err != nil {
 		return median, maximum, err
 	}
-	if changedA {
-		sdA = solver.SD(nil, a)
+	if pair.ChangedA {
+		sdA = solver.SD(nil, pair.A)
 	}
-	if changedB {
-		sdB = solver.SD(nil, b)
+	if pair.ChangedB {
+		sdB = solver.SD(nil, pair.B)
 	}
-	sd50, sd100 := solver.RotD(a, b, sdA, sdB)
-	peaks50, peaks100 := spectrum.RotDPeaks(p.FirstStepS, a, b)
-	if !finite(sd100, peaks100) {
+	sd50, sd100 := solver.RotD(pair.A, pair.B, sdA, sdB)
+	peaks50, peaks100 := spectrum.RotDPeaks(stepS, pair.A, pair.B)
+	if !areFinite(append(slices.Clone(sd100), peaks100.PGA, peaks100.PGV, peaks100.PGD)) {
 		return median, maximum, errors.New("the motion is beyond the range of numbers")
 	}
 	return solvers.spectra(sd50, peaks50), solvers.spectra(sd100, peaks100), nil
 }
 
-// finite reports whether the maxima of all directions are numbers, and with them
-// all else that was computed.
-func finite(sd []float64, peaks spectrum.GroundPeaks) bool {
-	sum := peaks.PGA - peaks.PGA + (peaks.PGV - peaks.PGV) + (peaks.PGD - peaks.PGD)
-	for _, d := range sd {
-		sum += d - d
-	}
-	return sum == 0
-}
-
-// betweenDeg is the angle from the first component to the second, in degrees, a
-// right angle where it is unknown.
-func betweenDeg(p db.Pair) float64 {
-	if !p.BetweenKnown {
-		return 90
-	}
-	return p.BetweenDeg
+// areFinite reports whether all are numbers. Where the maxima over all directions
+// are, the medians are too.
+func areFinite(values []float64) bool {
+	return !slices.ContainsFunc(values, func(x float64) bool { return math.IsNaN(x) || math.IsInf(x, 0) })
 }
 
 // storeBatch stores the rotations in one transaction and reports them once it is
@@ -150,10 +153,7 @@ func (r *rotator) storeBatch(ctx context.Context, batch []rotation) error {
 	r.count += len(batch) - len(settled)
 	for _, rot := range settled {
 		r.count++
-		report := Rotated{Done: r.count, Total: r.total, Record: rot.pair.Code, Assumed: !rot.pair.BetweenKnown}
-		if rot.err != nil {
-			report.Reason = rot.err.Error()
-		}
+		report := Rotated{Done: r.count, Total: r.total, Record: rot.pair.Code, Assumed: rot.assumed, Reason: rot.reason, Detail: rot.detail}
 		r.summary.addRotated(report)
 		r.opts.Rotated(report)
 	}
@@ -161,7 +161,7 @@ func (r *rotator) storeBatch(ctx context.Context, batch []rotation) error {
 }
 
 func (r *rotator) put(ctx context.Context, tx *db.Tx, rot rotation) error {
-	if rot.err != nil {
+	if rot.reason != "" {
 		return nil
 	}
 	if err := tx.PutRotated(ctx, rot.pair.RecordID, r.run.generation.ID, db.RoleRotD50, rot.median); err != nil {

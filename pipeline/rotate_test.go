@@ -131,12 +131,12 @@ func compareRotated(t *testing.T, store *db.Store, first, second []float64, betw
 	if err != nil {
 		t.Fatal(err)
 	}
-	a, b, _, _, err := spectrum.Pair(first, second, between)
+	p, err := spectrum.NewPair(first, second, between)
 	if err != nil {
 		t.Fatal(err)
 	}
-	sd50, sd100 := solver.RotD(a, b, solver.SD(nil, a), solver.SD(nil, b))
-	peaks50, peaks100 := spectrum.RotDPeaks(0.01, a, b)
+	sd50, sd100 := solver.RotD(p.A, p.B, solver.SD(nil, p.A), solver.SD(nil, p.B))
+	peaks50, peaks100 := spectrum.RotDPeaks(0.01, p.A, p.B)
 	for role, want := range map[string][]float64{db.RoleRotD50: sd50, db.RoleRotD100: sd100} {
 		if got := stored(t, store, role); !slices.Equal(got, want) {
 			t.Errorf("%s = %v, want %v", role, got, want)
@@ -297,15 +297,19 @@ func TestPairsThatCannotBeRotated(t *testing.T) {
 		}
 	}
 	for i, rotated := range []int{1, 0} {
-		got, said := reasons(t, store, options(dir))
+		got, said := reasons(t, meddling{store, func(p db.Pair) {
+			if strings.HasSuffix(p.Code, "steps") || strings.HasSuffix(p.Code, "near") {
+				t.Errorf("run %d: %s was read, although it makes no pair", i, p.Code)
+			}
+		}}, options(dir))
 		if got.Rotated != rotated || got.NotRotated != 4 || !got.Complete() {
 			t.Errorf("run %d: summary = %+v", i, got)
 		}
 		for station, want := range map[string]string{
-			"steps": "different time steps: 0.01 s and 0.02 s", "near": "directions too near to each other: 20° apart",
+			"steps": "horizontal components of different time steps: 0.01 s and 0.02 s", "near": "horizontal components too near in direction: azimuths 0° and 20°",
 			"damaged": "damaged in the store: h2: ", "cut": "damaged in the store: h1: ",
 		} {
-			if r := said["invented-20260312_"+station]; !strings.HasPrefix(r.Reason, want) || r.Total != rotated+4 {
+			if r := said["invented-20260312_"+station]; !strings.HasPrefix(r.Reason+": "+r.Detail, want) || r.Total != rotated+4 {
 				t.Errorf("run %d: %s: %+v, want %q", i, station, r, want)
 			}
 		}

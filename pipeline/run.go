@@ -13,7 +13,7 @@ import (
 // Store is what a run needs of the store; *db.Store is one.
 type Store interface {
 	Held(ctx context.Context, sha256 string) (path string, ok bool, err error)
-	View(ctx context.Context, f func(*db.Snapshot) error) error
+	Unrotated(ctx context.Context, generationID int64) ([]db.Pair, error)
 	ReadPair(ctx context.Context, g db.Generation, p db.Pair) (first, second db.StoredMotion, err error)
 	Update(ctx context.Context, f func(*db.Tx) error) error
 }

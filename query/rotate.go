@@ -17,43 +17,49 @@ func (m *motion) isAssumed() bool {
 	if !m.isRotated() {
 		return false
 	}
-	_, known := betweenDeg(m.members[0], m.members[1])
-	return !known
+	_, assumed, _ := between(m.members[0], m.members[1])
+	return assumed
 }
 
-// betweenDeg is the angle in degrees from the first component to the second, a
-// right angle where an azimuth is unknown. Ingest rotates by the same rule.
-func betweenDeg(first, second *db.HeldComponent) (deg float64, known bool) {
-	if first.AzimuthDeg == nil || second.AzimuthDeg == nil {
-		return 90, false
+// between is the angle in degrees from the first component to the second, by the
+// rule of ingest.
+func between(first, second *db.HeldComponent) (deg float64, assumed bool, err error) {
+	return spectrum.Between(horizontal(first), horizontal(second))
+}
+
+func horizontal(c *db.HeldComponent) spectrum.Horizontal {
+	h := spectrum.Horizontal{StepS: c.StepS}
+	if c.AzimuthDeg != nil {
+		h.AzimuthDeg, h.AzimuthKnown = *c.AzimuthDeg, true
 	}
-	return *second.AzimuthDeg - *first.AzimuthDeg, true
+	return h
 }
 
 // notRotatable says why two horizontals cannot be rotated, "" where they can.
 func notRotatable(first, second *db.HeldComponent) string {
-	if first.StepS != second.StepS {
-		return "horizontal components of different time steps"
-	}
-	between, _ := betweenDeg(first, second)
-	if _, _, _, _, err := spectrum.Pair(nil, nil, between); errors.Is(err, spectrum.ErrDirections) {
-		return "horizontal components too near in direction"
+	_, _, err := between(first, second)
+	if e, ok := errors.AsType[*spectrum.PairError](err); ok {
+		return e.Reason
 	}
 	return ""
 }
 
 // pairSamples reads two horizontals that can be rotated and makes them fit for
 // it.
-func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (a, b []float64, err error) {
-	if a, err = snapshot.Samples(ctx, first.RecordID, first.Role); err != nil {
-		return nil, nil, err
+func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (p spectrum.Pair, err error) {
+	deg, _, err := between(first, second)
+	if err != nil {
+		return p, err
 	}
-	if b, err = snapshot.Samples(ctx, second.RecordID, second.Role); err != nil {
-		return nil, nil, err
+	a, err := snapshot.Samples(ctx, first.RecordID, first.Role)
+	if err != nil {
+		return p, err
 	}
-	between, _ := betweenDeg(first, second)
-	a, b, _, _, err = spectrum.Pair(a, b, between)
-	return a, b, err
+	b, err := snapshot.Samples(ctx, second.RecordID, second.Role)
+	if err != nil {
+		return p, err
+	}
+	return spectrum.NewPair(a, b, deg)
 }
 
 // rotatedOf returns peaks of rotated pairs by role and the record's id. For
@@ -110,11 +116,11 @@ func addPeaks(ctx context.Context, snapshot *db.Snapshot, c Component, stored ma
 
 // computePeaks is of a rotated motion.
 func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (spectrum.GroundPeaks, error) {
-	a, b, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
+	p, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
 	if err != nil {
 		return spectrum.GroundPeaks{}, fmt.Errorf("compute peaks of %s %s: %w", m.record(), m.role, err)
 	}
-	median, maximum := spectrum.RotDPeaks(m.members[0].StepS, a, b)
+	median, maximum := spectrum.RotDPeaks(m.members[0].StepS, p.A, p.B)
 	if Component(m.role) == ComponentRotD100 {
 		return maximum, nil
 	}
@@ -123,11 +129,11 @@ func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (spect
 
 // rotatedSD is the SD of a rotated motion by a solver of its time step.
 func (m *motion) rotatedSD(ctx context.Context, snapshot *db.Snapshot, solver *spectrum.Solver) ([]float64, error) {
-	a, b, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
+	p, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
 	if err != nil {
 		return nil, err
 	}
-	median, maximum := solver.RotD(a, b, solver.SD(nil, a), solver.SD(nil, b))
+	median, maximum := solver.RotD(p.A, p.B, solver.SD(nil, p.A), solver.SD(nil, p.B))
 	if Component(m.role) == ComponentRotD100 {
 		return maximum, nil
 	}

@@ -151,7 +151,7 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 	}
 	defer func() { err = errors.Join(err, store.Close()) }()
 	summary, err := pipeline.Run(ctx, store, o.pipeline)
-	o.monitor.finish()
+	o.monitor.end()
 	if err != nil && summary.Files == 0 {
 		return err
 	}
@@ -201,11 +201,12 @@ type warningCount struct {
 }
 
 // reasonCount is one reason why pairs were not rotated, how many, and the record
-// of the first.
+// and the particulars of the first.
 type reasonCount struct {
 	Reason string `json:"reason"`
 	Count  int    `json:"count"`
 	First  string `json:"first"`
+	Detail string `json:"detail"`
 }
 
 // fileNote is one file that was not stored and why.
@@ -225,7 +226,7 @@ func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) i
 		r.Warnings = append(r.Warnings, warningCount{w.text, w.count, w.first})
 	}
 	for _, u := range m.unfit {
-		r.Unfit = append(r.Unfit, reasonCount{u.text, u.count, u.first})
+		r.Unfit = append(r.Unfit, reasonCount{u.text, u.count, u.first, u.detail})
 	}
 	for _, cause := range slices.Sorted(maps.Keys(m.causes)) {
 		r.ByCause = append(r.ByCause, causeCount{cause, m.causes[cause]})
@@ -296,7 +297,11 @@ func (r ingestReport) printRotation(p *printer) {
 		p.printf("  records whose horizontals do not pair   %7d\n", r.NotRotated)
 	}
 	for _, u := range r.Unfit {
-		p.printf("    %s: %d, first %s\n", u.Reason, u.Count, u.First)
+		detail := ""
+		if u.Detail != "" {
+			detail = " (" + u.Detail + ")"
+		}
+		p.printf("    %s: %d, first %s%s\n", u.Reason, u.Count, u.First, detail)
 	}
 }
 

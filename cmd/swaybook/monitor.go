@@ -5,7 +5,6 @@ import (
 	"log/slog"
 	"os"
 	"regexp"
-	"strings"
 	"time"
 
 	"github.com/schollz/progressbar/v3"
@@ -57,14 +56,15 @@ func (n *notes) add(f fileNote) {
 // tally counts equal remarks.
 type tally []remark
 
-// remark is one text with how often it was said and of what first.
+// remark is one text with how often it was said, and of what and with which
+// particulars first.
 type remark struct {
-	text  string
-	count int
-	first string
+	text          string
+	count         int
+	first, detail string
 }
 
-func (t *tally) add(text, of string) {
+func (t *tally) add(text, of, detail string) {
 	for i := range *t {
 		if (*t)[i].text == text {
 			(*t)[i].count++
@@ -72,7 +72,7 @@ func (t *tally) add(text, of string) {
 		}
 	}
 	if len(*t) < maxNotes {
-		*t = append(*t, remark{text, 1, of})
+		*t = append(*t, remark{text, 1, of, detail})
 	}
 }
 
@@ -102,11 +102,7 @@ func (m *monitor) record(r pipeline.Rotated) {
 		m.rotating, m.bar, m.started = true, nil, time.Now()
 	}
 	if r.Reason != "" {
-		reason, _, _ := strings.Cut(r.Reason, ": ")
-		m.unfit.add(reason, r.Record)
-		if !m.terminal {
-			m.logger.Warn("not rotated", "record", r.Record, "reason", r.Reason)
-		}
+		m.unfit.add(r.Reason, r.Record, r.Detail)
 	}
 	m.show("rotating", "records", r.Done, r.Total)
 }
@@ -134,7 +130,7 @@ func (m *monitor) note(f pipeline.FileReport) {
 		m.causes[general(c.Text)]++
 	}
 	for _, text := range f.Warnings {
-		m.warnings.add(text, f.Path)
+		m.warnings.add(text, f.Path, "")
 	}
 	// A line in the middle of the bar would tear it; the report repeats them.
 	if m.terminal {
@@ -160,6 +156,17 @@ func (m *monitor) showBar(doing, things string, done, total int) {
 			progressbar.OptionThrottle(100*time.Millisecond), progressbar.OptionClearOnFinish(), progressbar.OptionFullWidth())
 	}
 	m.bar.Set(done) // the bar's own errors are a terminal that went away
+}
+
+// end clears the bar and says once for each reason why pairs were not rotated.
+func (m *monitor) end() {
+	m.finish()
+	if m.terminal {
+		return // the report says it
+	}
+	for _, u := range m.unfit {
+		m.logger.Warn("not rotated", "reason", u.text, "records", u.count, "first", u.first, "detail", u.detail)
+	}
 }
 
 // finish clears the bar.

@@ -1,33 +1,81 @@
 package spectrum
 
-import "math"
+import (
+	"fmt"
+	"math"
+)
 
 // rightAngleDeg is how far from a right angle the difference of two azimuths may
 // be for rounding: azimuths are decimals of a few digits.
 const rightAngleDeg = 1e-9
 
-// Pair makes two horizontal components fit for RotD and RotDPeaks: of equal
-// length and at a right angle. The shorter is followed by zeros, since the ground
-// is still after the last sample; and second, measured betweenDeg degrees from
-// first, is taken at a right angle to it as RightAngle does.
+// Horizontal is what decides, beside the samples, whether a horizontal component
+// can be rotated with another one.
+type Horizontal struct {
+	StepS        float64 // s between samples
+	AzimuthDeg   float64 // degrees clockwise from north
+	AzimuthKnown bool
+}
+
+// The reasons of a PairError.
+const (
+	ReasonSteps      = "horizontal components of different time steps"
+	ReasonDirections = "horizontal components too near in direction"
+)
+
+// PairError says why two horizontal components cannot be rotated: a reason by
+// which cases can be counted, and the particulars of this one.
+type PairError struct{ Reason, Detail string }
+
+// Error returns "reason: particulars".
+func (e *PairError) Error() string { return e.Reason + ": " + e.Detail }
+
+// Between returns the angle in degrees from the first component to the second, as
+// NewPair takes it. Where an azimuth is unknown a right angle is assumed. The
+// error is a *PairError where the two cannot be rotated together.
+func Between(first, second Horizontal) (deg float64, assumed bool, err error) {
+	if first.StepS != second.StepS {
+		return 0, false, &PairError{ReasonSteps, fmt.Sprintf("%g s and %g s", first.StepS, second.StepS)}
+	}
+	if !first.AzimuthKnown || !second.AzimuthKnown {
+		return 90, true, nil
+	}
+	deg = second.AzimuthDeg - first.AzimuthDeg
+	if _, err := RightAngle(nil, nil, deg); err != nil {
+		return 0, false, &PairError{ReasonDirections, fmt.Sprintf("azimuths %g° and %g°", first.AzimuthDeg, second.AzimuthDeg)}
+	}
+	return deg, false, nil
+}
+
+// Pair is two horizontal components that are fit for RotD and RotDPeaks: of equal
+// length and at a right angle.
+type Pair struct {
+	A, B []float64
+	// ChangedA and ChangedB say that A or B is another motion than the component
+	// that it was made of, with another SD. Zeros after the end are a change: the
+	// ground then comes to rest along the line to the first of them, where without
+	// them it is at rest at once.
+	ChangedA, ChangedB bool
+}
+
+// NewPair makes two components a pair. The shorter is followed by zeros, since the
+// ground is still after the last sample; and second, measured betweenDeg degrees
+// from first, is taken at a right angle to it as RightAngle does.
 //
-// changedA and changedB say that a or b is another motion than first or second,
-// with another SD. Zeros are a change: the ground then comes to rest along the
-// line to the first of them, where without them it is at rest at once.
-//
-// first and second keep their values, and a and b share their samples where these
-// need no change. The error wraps ErrDirections.
-func Pair(first, second []float64, betweenDeg float64) (a, b []float64, changedA, changedB bool, err error) {
+// first and second keep their values, and the pair shares their samples where
+// these need no change. The error wraps ErrDirections.
+func NewPair(first, second []float64, betweenDeg float64) (p Pair, err error) {
 	n := max(len(first), len(second))
-	changedA, changedB = len(first) < n, len(second) < n
-	a, b = followedByZeros(first, n), followedByZeros(second, n)
+	p.ChangedA, p.ChangedB = len(first) < n, len(second) < n
+	p.A, p.B = followedByZeros(first, n), followedByZeros(second, n)
 	if math.Abs(math.Remainder(betweenDeg-90, 180)) < rightAngleDeg {
-		return a, b, changedA, changedB, nil
+		return p, nil
 	}
-	if b, err = RightAngle(a, b, betweenDeg); err != nil {
-		return nil, nil, false, false, err
+	if p.B, err = RightAngle(p.A, p.B, betweenDeg); err != nil {
+		return Pair{}, err
 	}
-	return a, b, changedA, true, nil
+	p.ChangedB = true
+	return p, nil
 }
 
 // followedByZeros returns the samples with zeros after them up to a length of n.

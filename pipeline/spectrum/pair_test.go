@@ -33,7 +33,7 @@ func TestPairPadsAndTurns(t *testing.T) {
 	for _, test := range tests {
 		t.Run(test.name, func(t *testing.T) {
 			keep := [2][]float64{slices.Clone(test.first), slices.Clone(test.second)}
-			a, b, changedA, changedB, err := Pair(test.first, test.second, test.between)
+			p, err := NewPair(test.first, test.second, test.between)
 			if err != nil {
 				t.Fatal(err)
 			}
@@ -44,8 +44,8 @@ func TestPairPadsAndTurns(t *testing.T) {
 					t.Fatal(err)
 				}
 			}
-			if changedA != test.changedA || changedB != test.changedB || !slices.Equal(a, test.a) || !slices.Equal(b, want) {
-				t.Errorf("changed %v and %v, want %v and %v; a as wanted %v, b as wanted %v", changedA, changedB, test.changedA, test.changedB, slices.Equal(a, test.a), slices.Equal(b, want))
+			if p.ChangedA != test.changedA || p.ChangedB != test.changedB || !slices.Equal(p.A, test.a) || !slices.Equal(p.B, want) {
+				t.Errorf("changed %v and %v, want %v and %v; a as wanted %v, b as wanted %v", p.ChangedA, p.ChangedB, test.changedA, test.changedB, slices.Equal(p.A, test.a), slices.Equal(p.B, want))
 			}
 			if !slices.Equal(test.first, keep[0]) || !slices.Equal(test.second, keep[1]) {
 				t.Error("the components were written to")
@@ -56,9 +56,49 @@ func TestPairPadsAndTurns(t *testing.T) {
 
 func TestPairRefusesNearDirections(t *testing.T) {
 	for _, between := range []float64{0, 20, -29.9, 180, 340, math.NaN()} {
-		a, b, _, _, err := Pair(shaken(1, 9), shaken(2, 9), between)
-		if !errors.Is(err, ErrDirections) || a != nil || b != nil {
-			t.Errorf("%g°: %v, %v, %v, want ErrDirections", between, a, b, err)
+		p, err := NewPair(shaken(1, 9), shaken(2, 9), between)
+		if !errors.Is(err, ErrDirections) || p.A != nil || p.B != nil {
+			t.Errorf("%g°: %v, %v, want ErrDirections", between, p, err)
 		}
+	}
+}
+
+// TestBetween: the angle, and each reason why there is none.
+func TestBetween(t *testing.T) {
+	at := func(deg float64) Horizontal { return Horizontal{StepS: 0.01, AzimuthDeg: deg, AzimuthKnown: true} }
+	unknown := Horizontal{StepS: 0.01}
+	tests := []struct {
+		name          string
+		first, second Horizontal
+		deg           float64
+		assumed       bool
+		reason        string // "" where they can be rotated
+		detail        string
+	}{
+		{"right angle", at(10), at(100), 90, false, "", ""},
+		{"the other way round", at(350), at(260), -90, false, "", ""},
+		{"through north", at(350), at(80), -270, false, "", ""},
+		{"oblique", at(10), at(70), 60, false, "", ""},
+		{"first unknown", unknown, at(100), 90, true, "", ""},
+		{"second unknown", at(100), unknown, 90, true, "", ""},
+		{"near", at(10), at(30), 0, false, ReasonDirections, "azimuths 10° and 30°"},
+		{"opposite", at(10), at(190), 0, false, ReasonDirections, "azimuths 10° and 190°"},
+		{"no number", at(10), at(math.NaN()), 0, false, ReasonDirections, "azimuths 10° and NaN°"},
+		{"steps, before all else", at(10), Horizontal{StepS: 0.02}, 0, false, ReasonSteps, "0.01 s and 0.02 s"},
+	}
+	for _, test := range tests {
+		t.Run(test.name, func(t *testing.T) {
+			deg, assumed, err := Between(test.first, test.second)
+			var pairError *PairError
+			if errors.As(err, &pairError) != (test.reason != "") {
+				t.Fatalf("error %v, want reason %q", err, test.reason)
+			}
+			if pairError != nil && *pairError != (PairError{test.reason, test.detail}) {
+				t.Errorf("error %v, want %s: %s", err, test.reason, test.detail)
+			}
+			if deg != test.deg || assumed != test.assumed {
+				t.Errorf("Between = %g, %v, want %g, %v", deg, assumed, test.deg, test.assumed)
+			}
+		})
 	}
 }
