@@ -10,17 +10,17 @@ import (
 	"sync"
 )
 
-// ordinateWidth is the width of one decimal in spectrum.sd_m, wide enough for
+// OrdinateWidth is the number of bytes of one decimal in spectrum.sd_m, wide enough for
 // -1.2345678901234567e-308. The view in the schema cuts by the same width.
-const ordinateWidth = 24
+const OrdinateWidth = 24
 
 // encodeOrdinates writes each value with 17 significant digits, enough to
-// restore every double, right-aligned in ordinateWidth characters.
+// restore every double, right-aligned in OrdinateWidth characters.
 func encodeOrdinates(dst []byte, values []float64) []byte {
-	var digits [ordinateWidth]byte
+	var digits [OrdinateWidth]byte
 	for _, x := range values {
 		s := strconv.AppendFloat(digits[:0], x, 'e', 16, 64)
-		for range ordinateWidth - len(s) {
+		for range OrdinateWidth - len(s) {
 			dst = append(dst, ' ')
 		}
 		dst = append(dst, s...)
@@ -34,12 +34,12 @@ type Ordinates []byte
 // Decode sets dst to the values. The error says that the text does not hold
 // len(dst) of them.
 func (data Ordinates) Decode(dst []float64) error {
-	if len(data) != ordinateWidth*len(dst) {
-		return fmt.Errorf("spectrum of %d bytes, want %d values of %d", len(data), len(dst), ordinateWidth)
+	if len(data) != OrdinateWidth*len(dst) {
+		return fmt.Errorf("spectrum of %d bytes, want %d values of %d", len(data), len(dst), OrdinateWidth)
 	}
 	powers := powersOfTen()
 	for i := range dst {
-		field := data[i*ordinateWidth : (i+1)*ordinateWidth]
+		field := data[i*OrdinateWidth : (i+1)*OrdinateWidth]
 		x, ok := fastOrdinate(field, powers)
 		if !ok {
 			var err error
@@ -83,7 +83,7 @@ var powersOfTen = sync.OnceValue(func() *[powersKnown]wide {
 // nearest point halfway to another double is at least 5.55e-17 away, so that the
 // product cannot fall on the wrong side.
 func fastOrdinate(field []byte, powers *[powersKnown]wide) (float64, bool) {
-	const first = ordinateWidth - 22
+	const first = OrdinateWidth - 22
 	if field[first-2] != ' ' || field[first-1] != ' ' || field[first+1] != '.' || field[first+18] != 'e' {
 		return 0, false
 	}

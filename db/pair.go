@@ -61,6 +61,7 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 
 // StoredMotion is what the store holds of a component, still encoded.
 type StoredMotion struct {
+	role              string
 	samples           int
 	digest            string
 	data              []byte   // nil where there is none
@@ -86,8 +87,8 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 
 func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64) (StoredMotion, error) {
 	m := StoredMotion{periods: len(g.Grid.PeriodsS), dampings: len(g.Grid.Dampings)}
-	err := tx.QueryRowContext(ctx, `SELECT c.samples, coalesce(s.sha256, ''), s.data FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE c.id = ?`, componentID).
-		Scan(&m.samples, &m.digest, &m.data)
+	err := tx.QueryRowContext(ctx, `SELECT c.role, c.samples, coalesce(s.sha256, ''), s.data FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE c.id = ?`, componentID).
+		Scan(&m.role, &m.samples, &m.digest, &m.data)
 	if err != nil {
 		return m, err
 	}
@@ -105,8 +106,15 @@ func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64
 
 // Decode returns the samples in m/s², checked against their digest, and the SD in
 // m, the grid's dampings outside and its periods inside: the doubles that were
-// stored. The error says what is damaged.
+// stored. The error wraps ErrDamaged and says what is.
 func (m StoredMotion) Decode() (samples, sd []float64, err error) {
+	if samples, sd, err = m.decode(); err != nil {
+		return nil, nil, fmt.Errorf("%w: %s: %w", ErrDamaged, m.role, err)
+	}
+	return samples, sd, nil
+}
+
+func (m StoredMotion) decode() (samples, sd []float64, err error) {
 	if samples, err = DecodeSamples(m.data, m.samples, m.digest); err != nil {
 		return nil, nil, err
 	}

@@ -89,12 +89,13 @@ type Span struct{ From, To int }
 
 // Spectra reads the SD spectra of a role at the grid's damping of this position,
 // at the periods of the span only, and calls f with each in the order of the
-// record's id. Each text holds one value a period. f must not keep it.
+// record's id. Each text holds one value a period, unless it is damaged. f must
+// not keep it.
 func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
 	what, args := "sd_m", []any{s.Generation.ID, dampingPosition, role}
 	if periods != (Span{0, len(s.Generation.Grid.PeriodsS)}) {
 		what = "substr(sd_m, ?4, ?5)"
-		args = append(args, periods.From*ordinateWidth+1, (periods.To-periods.From)*ordinateWidth)
+		args = append(args, periods.From*OrdinateWidth+1, (periods.To-periods.From)*OrdinateWidth)
 	}
 	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, `+what+` FROM spectrum
 		WHERE generation_id = ?1 AND damping_position = ?2 AND role = ?3 ORDER BY record_id`, args...)
@@ -107,9 +108,6 @@ func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int
 	for rows.Next() {
 		if err := rows.Scan(&id, &text); err != nil {
 			return fmt.Errorf("read spectra: %w", err)
-		}
-		if want := (periods.To - periods.From) * ordinateWidth; len(text) != want {
-			return fmt.Errorf("read spectra: record %d %s: %d bytes, want %d", id, role, len(text), want)
 		}
 		if err := f(id, Ordinates(text)); err != nil {
 			return err
@@ -151,19 +149,19 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 }
 
 // Samples returns a component's acceleration in m/s², checked against its
-// digest.
+// digest. The error wraps ErrDamaged where that cannot be had.
 func (s *Snapshot) Samples(ctx context.Context, recordID int64, role string) ([]float64, error) {
 	var n int
 	var digest string
 	var data []byte
-	err := s.tx.QueryRowContext(ctx, `SELECT c.samples, s.sha256, s.data FROM component c JOIN series s ON s.component_id = c.id WHERE c.record_id = ? AND c.role = ?`, recordID, role).
+	err := s.tx.QueryRowContext(ctx, `SELECT c.samples, coalesce(s.sha256, ''), s.data FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE c.record_id = ? AND c.role = ?`, recordID, role).
 		Scan(&n, &digest, &data)
 	if err != nil {
 		return nil, fmt.Errorf("read samples: %w", err)
 	}
 	samples, err := DecodeSamples(data, n, digest)
 	if err != nil {
-		return nil, fmt.Errorf("read samples: %w", err)
+		return nil, fmt.Errorf("%w: %s: %w", ErrDamaged, role, err)
 	}
 	return samples, nil
 }

@@ -193,8 +193,8 @@ func FuzzDecodeSamples(f *testing.F) {
 func TestOrdinatesRoundTrip(t *testing.T) {
 	values := []float64{0, 1, 0.1, 1.0 / 3, 1e-12, 123.456, 5e-324, math.MaxFloat64, math.SmallestNonzeroFloat64, -2.5e-308}
 	text := encodeOrdinates(nil, values)
-	if len(text) != ordinateWidth*len(values) {
-		t.Fatalf("%d bytes, want %d", len(text), ordinateWidth*len(values))
+	if len(text) != OrdinateWidth*len(values) {
+		t.Fatalf("%d bytes, want %d", len(text), OrdinateWidth*len(values))
 	}
 	got := make([]float64, len(values))
 	if err := Ordinates(text).Decode(got); err != nil {

@@ -11,6 +11,9 @@ var ErrNoStore = errors.New("no such store")
 // ErrNewer says that the store was written by a newer program.
 var ErrNewer = errors.New("store is newer than this program")
 
+// ErrDamaged says that what the store holds of a component is not what was stored.
+var ErrDamaged = errors.New("damaged in the store")
+
 // Roles that a stored component can have.
 const (
 	RoleH1 = "h1"
@@ -133,7 +136,7 @@ type Spectra struct {
 // to the transaction that stores it. SD is nil afterwards.
 func (s *Spectra) Encode() {
 	for _, sd := range s.SD {
-		s.text = append(s.text, encodeOrdinates(make([]byte, 0, ordinateWidth*len(sd)), sd))
+		s.text = append(s.text, encodeOrdinates(make([]byte, 0, OrdinateWidth*len(sd)), sd))
 	}
 	s.SD = nil
 }

@@ -92,11 +92,11 @@ func (rot rotation) failed(err error) rotation {
 func rotatePair(solvers *solvers, stepS, betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
 	a, sdA, err := first.Decode()
 	if err != nil {
-		return median, maximum, fmt.Errorf("damaged in the store: %s: %w", db.RoleH1, err)
+		return median, maximum, err
 	}
 	b, sdB, err := second.Decode()
 	if err != nil {
-		return median, maximum, fmt.Errorf("damaged in the store: %s: %w", db.RoleH2, err)
+		return median, maximum, err
 	}
 	solver, err := solvers.get(stepS)
 	if err != nil {

@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"sync"
 
@@ -10,10 +11,10 @@ import (
 )
 
 // compute fills in some periods of some motions of o from samples, both given by
-// position. A motion is the unit of work; the samples of at most GOMAXPROCS
+// position, and notes those whose samples do not allow it. A motion is the unit of work; the samples of at most GOMAXPROCS
 // motions are in memory. The snapshot is one connection, whose calls database/sql
 // carries out one at a time; decompression and solving run side by side.
-func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, which, missing []int) error {
+func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, out *unfit, which, missing []int) error {
 	if len(missing) == 0 {
 		return nil
 	}
@@ -24,9 +25,16 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, wh
 	solvers := &solvers{method: s.method, oscillators: oscillators}
 	return inParallel(ctx, len(which), func(ctx context.Context, k int) error {
 		m := &motions[which[k]]
+		if out.has(which[k]) {
+			return nil
+		}
 		err := solvers.solve(ctx, s.snapshot, m, func(sd []float64, isFirst bool) {
 			o.put(which[k], m, isFirst, missing, sd)
 		})
+		if errors.Is(err, db.ErrDamaged) {
+			out.add(which[k], reasonDamaged)
+			return nil
+		}
 		if err != nil {
 			return fmt.Errorf("compute spectrum of %s %s: %w", m.record(), m.role, err)
 		}

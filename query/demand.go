@@ -110,7 +110,7 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 	if err != nil {
 		return nil, err
 	}
-	loaded, err := s.load(ctx, picked.motions, band)
+	loaded, err := s.load(ctx, picked, band)
 	if err != nil {
 		return nil, err
 	}

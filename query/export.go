@@ -5,7 +5,7 @@ import (
 	"context"
 	"fmt"
 	"io"
-	"slices"
+	"maps"
 	"strconv"
 
 	"swaybook/db"
@@ -72,10 +72,12 @@ func (q ExportQuestion) write(ctx context.Context, snapshot *db.Snapshot, w io.W
 		return nil, err
 	}
 	e := newExporter(snapshot, q.dampings(snapshot), periods)
-	if err := e.writeAll(ctx, w, picked.motions); err != nil {
+	unfit, err := e.writeAll(ctx, w, picked.motions)
+	if err != nil {
 		return nil, err
 	}
-	return &ExportSummary{Selection: picked.report, Rows: len(picked.motions) * len(e.dampings) * len(periods)}, nil
+	err = picked.leaveOut(unfit)
+	return &ExportSummary{Selection: picked.report, Rows: len(picked.motions) * len(e.dampings) * len(periods)}, err
 }
 
 func (q ExportQuestion) dampings(snapshot *db.Snapshot) []float64 {
@@ -112,36 +114,53 @@ func newExporter(snapshot *db.Snapshot, dampings, periods []float64) *exporter {
 
 func (e *exporter) partSize() int { return max(exportGroup, e.memory/(8*len(e.keys))) }
 
-func (e *exporter) writeAll(ctx context.Context, w io.Writer, motions []motion) error {
+// writeAll returns the positions of the motions that it could not write, and why.
+func (e *exporter) writeAll(ctx context.Context, w io.Writer, motions []motion) (unfit map[int]string, err error) {
 	out := bufio.NewWriterSize(w, 1<<16)
 	if _, err := out.WriteString(exportHeader); err != nil {
-		return fmt.Errorf("write ordinates: %w", err)
+		return nil, fmt.Errorf("write ordinates: %w", err)
 	}
-	for part := range slices.Chunk(motions, e.partSize()) {
-		if err := e.writePart(ctx, out, part); err != nil {
-			return err
+	unfit = map[int]string{}
+	for from := 0; from < len(motions); from += e.partSize() {
+		part := motions[from:min(from+e.partSize(), len(motions))]
+		left, err := e.writePart(ctx, out, part)
+		if err != nil {
+			return nil, err
+		}
+		for i, reason := range left {
+			unfit[from+i] = reason
 		}
 	}
 	if err := out.Flush(); err != nil {
-		return fmt.Errorf("write ordinates: %w", err)
+		return nil, fmt.Errorf("write ordinates: %w", err)
 	}
-	return nil
+	return unfit, nil
 }
 
-func (e *exporter) writePart(ctx context.Context, out *bufio.Writer, part []motion) error {
+func (e *exporter) writePart(ctx context.Context, out *bufio.Writer, part []motion) (unfit map[int]string, err error) {
 	loaded := make([]*ordinates, len(e.dampings))
+	unfit = map[int]string{}
 	for i, zeta := range e.dampings {
 		s := source{snapshot: e.snapshot, damping: zeta}
-		var err error
-		if loaded[i], err = s.load(ctx, part, e.periods); err != nil {
-			return err
+		var left map[int]string
+		if loaded[i], left, err = s.loadMotions(ctx, part, e.periods); err != nil {
+			return nil, err
 		}
+		maps.Copy(unfit, left)
 	}
+	return unfit, e.writeRows(ctx, out, part, loaded, unfit)
+}
+
+// writeRows writes the rows of a part, but for those of the unfit.
+func (e *exporter) writeRows(ctx context.Context, out *bufio.Writer, part []motion, loaded []*ordinates, unfit map[int]string) error {
 	texts := make([][]byte, exportGroup)
 	for from := 0; from < len(part); from += exportGroup {
 		group := part[from:min(from+exportGroup, len(part))]
 		err := inParallel(ctx, len(group), func(_ context.Context, i int) error {
-			texts[i] = e.appendRows(texts[i][:0], loaded, &group[i], from+i)
+			texts[i] = texts[i][:0]
+			if _, isOut := unfit[from+i]; !isOut {
+				texts[i] = e.appendRows(texts[i], loaded, &group[i], from+i)
+			}
 			return nil
 		})
 		if err != nil {

@@ -103,7 +103,8 @@ func TestExportParts(t *testing.T) {
 		if e.partSize() != 25 {
 			t.Errorf("part of %d components, want 25", e.partSize())
 		}
-		return e.writeAll(t.Context(), &parts, picked.motions)
+		_, err = e.writeAll(t.Context(), &parts, picked.motions)
+		return err
 	})
 	if err != nil {
 		t.Fatal(err)

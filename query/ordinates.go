@@ -19,6 +19,23 @@ func (o *ordinates) at(period int) []float64 {
 	return o.sd[period*o.motions : (period+1)*o.motions]
 }
 
+// without returns the ordinates without some motions.
+func (o *ordinates) without(motions map[int]string) *ordinates {
+	if len(motions) == 0 {
+		return o
+	}
+	out := newOrdinates(o.periodsS, o.motions-len(motions))
+	sd := out.sd[:0]
+	for p := range o.periodsS {
+		for i, d := range o.at(p) {
+			if _, isOut := motions[i]; !isOut {
+				sd = append(sd, d)
+			}
+		}
+	}
+	return out
+}
+
 // Measure is the quantity of a spectrum.
 type Measure string
 

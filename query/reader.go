@@ -19,6 +19,7 @@ import (
 type reader struct {
 	o       *ordinates
 	motions []motion
+	unfit   *unfit  // those whose spectrum is damaged
 	stored  []int   // positions in the periods of o
 	columns []int   // of each stored one, counted from span.From
 	span    db.Span // of the grid's periods: no more is read
@@ -45,8 +46,8 @@ const batchText = 256 << 10
 
 // newReader takes the positions of the stored periods in those of o, and the
 // grid's positions of all periods of o.
-func newReader(o *ordinates, motions []motion, stored, columns []int) *reader {
-	r := &reader{o: o, motions: motions, stored: stored}
+func newReader(o *ordinates, motions []motion, unfit *unfit, stored, columns []int) *reader {
+	r := &reader{o: o, motions: motions, unfit: unfit, stored: stored}
 	r.batches.New = func() any { return &batch{} }
 	for _, p := range stored {
 		r.columns = append(r.columns, columns[p])
@@ -67,10 +68,13 @@ func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position in
 		if err != nil {
 			return nil, err
 		}
-		if len(found) > 0 && !Component(role).IsRotated() {
-			return nil, fmt.Errorf("read spectra: the store lacks the spectrum of record %s %s", r.motions[found[0]].record(), role)
+		if Component(role).IsRotated() {
+			lacking = append(lacking, found...)
+			continue
 		}
-		lacking = append(lacking, found...)
+		for _, motion := range found {
+			r.unfit.add(motion, reasonDamaged) // a component has its spectrum
+		}
 	}
 	return lacking, nil
 }
@@ -101,7 +105,10 @@ func (r *reader) readRole(ctx context.Context, snapshot *db.Snapshot, position i
 	group, ctx := errgroup.WithContext(ctx)
 	full := make(chan *batch, runtime.GOMAXPROCS(0))
 	for range runtime.GOMAXPROCS(0) {
-		group.Go(func() error { return r.decodeAll(full) })
+		group.Go(func() error {
+			r.decodeAll(full)
+			return nil
+		})
 	}
 	group.Go(func() error {
 		defer close(full)
@@ -137,6 +144,11 @@ func (r *reader) fetch(ctx context.Context, snapshot *db.Snapshot, position int,
 		if next == len(wanted) || wanted[next].recordID != id {
 			return nil
 		}
+		if len(sd) != r.width() {
+			r.unfit.add(wanted[next].motion, reasonDamaged)
+			next++
+			return nil
+		}
 		b.parts, b.text = append(b.parts, wanted[next]), append(b.text, sd...)
 		next++
 		if len(b.text) < batchText {
@@ -151,33 +163,31 @@ func (r *reader) fetch(ctx context.Context, snapshot *db.Snapshot, position int,
 	return lacking, send()
 }
 
-// decodeAll empties the channel; after a mistake it goes on without decoding, so
-// that nobody waits for it.
-func (r *reader) decodeAll(full <-chan *batch) (err error) {
+// width is the length of the text of one stored spectrum.
+func (r *reader) width() int { return db.OrdinateWidth * (r.span.To - r.span.From) }
+
+// decodeAll empties the channel.
+func (r *reader) decodeAll(full <-chan *batch) {
 	sd := make([]float64, r.span.To-r.span.From)
 	picked := make([]float64, len(r.columns))
 	for b := range full {
-		if err == nil {
-			err = r.decode(b, sd, picked)
-		}
+		r.decode(b, sd, picked)
 		b.parts, b.text = b.parts[:0], b.text[:0]
 		r.batches.Put(b)
 	}
-	return err
 }
 
 // decode needs space for all values of a spectrum and for those that are picked.
-func (r *reader) decode(b *batch, sd, picked []float64) error {
-	text := db.Ordinates(b.text)
+func (r *reader) decode(b *batch, sd, picked []float64) {
+	width := r.width()
 	for k, p := range b.parts {
-		width := len(text) / len(b.parts)
-		if err := text[k*width : (k+1)*width].Decode(sd); err != nil {
-			return fmt.Errorf("record %s: %w", r.motions[p.motion].record(), err)
+		if err := db.Ordinates(b.text[k*width : (k+1)*width]).Decode(sd); err != nil {
+			r.unfit.add(p.motion, reasonDamaged)
+			continue
 		}
 		for j, column := range r.columns {
 			picked[j] = sd[column]
 		}
 		r.o.put(p.motion, &r.motions[p.motion], p.isFirst, r.stored, picked)
 	}
-	return nil
 }

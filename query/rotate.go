@@ -62,69 +62,87 @@ func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.H
 	return spectrum.NewPair(a, b, deg)
 }
 
-// rotatedOf returns peaks of rotated pairs by role and the record's id. For
-// ComponentAll these are all that is stored; for a rotated component, where its
-// peaks are asked for, those of every pair that can be rotated. Otherwise there
-// is none.
-func rotatedOf(ctx context.Context, snapshot *db.Snapshot, c Component, details db.Details, held []db.HeldComponent) (map[string]map[int64]db.Peaks, error) {
+// findRotated notes peaks of rotated pairs. For ComponentAll these are all that
+// are stored; for a rotated component, where its peaks are asked for, those that
+// are stored and those of every other pair that is taken whatever its peaks are.
+func (p *picker) findRotated(ctx context.Context, snapshot *db.Snapshot, details db.Details, held []db.HeldComponent) error {
 	var roles []string
+	c := p.selection.Component
 	switch {
 	case c == ComponentAll:
 		roles = []string{db.RoleRotD50, db.RoleRotD100}
 	case c.IsRotated() && details&db.DetailPeaks != 0:
 		roles = []string{string(c)}
 	}
-	out := map[string]map[int64]db.Peaks{}
+	p.rotated, p.damaged = map[string]map[int64]db.Peaks{}, map[int64]bool{}
 	for _, role := range roles {
 		stored, err := snapshot.RotatedPeaks(ctx, role)
 		if err != nil {
-			return nil, err
+			return err
 		}
-		if c.IsRotated() {
-			if err := addPeaks(ctx, snapshot, c, stored, held); err != nil {
-				return nil, err
-			}
-		}
-		out[role] = stored
+		p.rotated[role] = stored
 	}
-	return out, nil
+	if len(roles) == 0 || !c.IsRotated() {
+		return nil
+	}
+	return p.addPeaks(ctx, snapshot, held)
 }
 
-// addPeaks computes the peaks of those pairs that lack them.
-func addPeaks(ctx context.Context, snapshot *db.Snapshot, c Component, stored map[int64]db.Peaks, held []db.HeldComponent) error {
+// addPeaks computes the peaks of those pairs that lack them and may be taken.
+func (p *picker) addPeaks(ctx context.Context, snapshot *db.Snapshot, held []db.HeldComponent) error {
 	var lacking []motion
-	p := picker{selection: Selection{Component: c}}
 	for components := range byRecord(held) {
 		candidates, reason := p.candidatesOf(components)
-		if _, ok := stored[components[0].RecordID]; !ok && reason == "" {
-			lacking = append(lacking, candidates...)
+		for i := range candidates {
+			if m := &candidates[i]; m.rotated == nil && reason == "" {
+				taken, err := p.mayTake(m)
+				if err != nil {
+					return err
+				}
+				if taken {
+					lacking = append(lacking, *m)
+				}
+			}
 		}
 	}
-	peaks := make([]spectrum.GroundPeaks, len(lacking))
+	computed := make([]*spectrum.GroundPeaks, len(lacking))
 	err := inParallel(ctx, len(lacking), func(ctx context.Context, i int) (err error) {
-		peaks[i], err = lacking[i].computePeaks(ctx, snapshot)
+		computed[i], err = lacking[i].computePeaks(ctx, snapshot)
+		if errors.Is(err, db.ErrDamaged) {
+			return nil
+		}
 		return err
 	})
 	if err != nil {
 		return err
 	}
-	for i := range lacking {
-		stored[lacking[i].members[0].RecordID] = db.Peaks(peaks[i])
+	for i, peaks := range computed {
+		if id := lacking[i].members[0].RecordID; peaks != nil {
+			p.rotated[lacking[i].role][id] = db.Peaks(*peaks)
+		} else {
+			p.damaged[id] = true
+		}
 	}
 	return nil
 }
 
+// mayTake reports whether a rotated motion is taken with some peaks.
+func (p *picker) mayTake(m *motion) (bool, error) {
+	unknown, met, err := p.ask(m)
+	return met && p.sitings[m.members[0].Record.Siting] && (unknown == "" || peaks[unknown]), err
+}
+
 // computePeaks is of a rotated motion.
-func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (spectrum.GroundPeaks, error) {
+func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (*spectrum.GroundPeaks, error) {
 	p, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
 	if err != nil {
-		return spectrum.GroundPeaks{}, fmt.Errorf("compute peaks of %s %s: %w", m.record(), m.role, err)
+		return nil, fmt.Errorf("compute peaks of %s %s: %w", m.record(), m.role, err)
 	}
 	median, maximum := spectrum.RotDPeaks(m.members[0].StepS, p.A, p.B)
 	if Component(m.role) == ComponentRotD100 {
-		return maximum, nil
+		return &maximum, nil
 	}
-	return median, nil
+	return &median, nil
 }
 
 // rotatedSD is the SD of a rotated motion by a solver of its time step.

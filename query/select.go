@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"iter"
+	"maps"
 	"slices"
 	"strings"
 
@@ -26,6 +27,8 @@ type picked struct {
 	report  SelectionReport
 	unmet   int
 	held    int
+	leftOut map[string]int // records by reason
+	hint    string         // where nothing is left
 }
 
 // pick carries out a selection whose defaults are filled in. Of the components
@@ -48,29 +51,35 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
-	p := &picker{selection: s, condition: condition, sitings: sitings, leftOut: map[string]int{}}
-	if p.rotated, err = rotatedOf(ctx, snapshot, s.Component, details, held); err != nil {
-		return nil, err
-	}
+	p := &picker{selection: s, condition: condition, sitings: sitings}
+	p.hint, p.leftOut = p.hintOf(), map[string]int{}
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
+	if err := p.findRotated(ctx, snapshot, details, held); err != nil {
+		return nil, err
+	}
 	for components := range byRecord(held) {
 		if err := p.take(components); err != nil {
 			return nil, err
 		}
 	}
-	return p.finish()
+	return &p.picked, p.finish()
 }
 
 // byRecord yields the components of one record after another.
 func byRecord(held []db.HeldComponent) iter.Seq[[]db.HeldComponent] {
-	return func(yield func([]db.HeldComponent) bool) {
-		for from := 0; from < len(held); {
+	return runs(held, func(c *db.HeldComponent) int64 { return c.RecordID })
+}
+
+// runs yields the runs of items with equal keys.
+func runs[T any](items []T, key func(*T) int64) iter.Seq[[]T] {
+	return func(yield func([]T) bool) {
+		for from := 0; from < len(items); {
 			to := from + 1
-			for to < len(held) && held[to].RecordID == held[from].RecordID {
+			for to < len(items) && key(&items[to]) == key(&items[from]) {
 				to++
 			}
-			if !yield(held[from:to]) {
+			if !yield(items[from:to]) {
 				return
 			}
 			from = to
@@ -84,13 +93,10 @@ type picker struct {
 	selection Selection
 	condition *where
 	sitings   map[string]bool
-	leftOut   map[string]int  // records by reason
-	reasons   []string        // in order of first use
-	events    map[string]bool // codes
-	unknown   int             // records of unknown siting that are taken
-	assumed   int             // records taken whose horizontals are assumed at a right angle
-	// rotated has peaks of rotated pairs by role and the record's id.
+	// rotated has peaks of rotated pairs by role and the record's id; damaged are
+	// the records of those whose peaks could not be computed.
 	rotated map[string]map[int64]db.Peaks
+	damaged map[int64]bool
 }
 
 // take looks at the components of one record. A record counts once as unmet if
@@ -100,7 +106,7 @@ type picker struct {
 func (p *picker) take(components []db.HeldComponent) error {
 	p.held++
 	candidates, lacking := p.candidatesOf(components)
-	before, unmet := len(p.motions), len(candidates) > 0
+	unmet := len(candidates) > 0
 	var reasons []string
 	for _, m := range candidates {
 		reason, met, err := p.judge(&m, lacking)
@@ -120,26 +126,19 @@ func (p *picker) take(components []db.HeldComponent) error {
 	if unmet {
 		p.unmet++
 	}
-	p.count(reasons)
-	if len(p.motions) > before {
-		p.note(p.motions[before:])
+	for _, r := range reasons {
+		p.leftOut[r]++
 	}
 	return nil
 }
 
 // judge says whether a motion is taken, or why it is left out.
 func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err error) {
-	unknown := ""
-	if p.condition != nil {
-		a := m.attributes()
-		if unknown = p.condition.unknown(&a); unknown == "" {
-			if met, err = p.condition.met(&a); err != nil || !met {
-				return "", false, err
-			}
-		}
-	}
+	unknown, met, err := p.ask(m)
 	siting := m.members[0].Record.Siting
 	switch {
+	case err != nil || !met:
+		return "", false, err
 	case !p.sitings[siting]:
 		return "siting " + siting, false, nil
 	case lacking != "":
@@ -150,55 +149,96 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 	return "", true, nil
 }
 
-func (p *picker) count(reasons []string) {
-	for _, r := range reasons {
-		if p.leftOut[r] == 0 {
-			p.reasons = append(p.reasons, r)
+// ask asks the expression of a motion. Where that lacks a number which the
+// expression uses, it counts as met; but where peaks of a rotated pair are all that
+// is lacking, only if it is met with some peaks.
+func (p *picker) ask(m *motion) (unknown string, met bool, err error) {
+	if p.condition == nil {
+		return "", true, nil
+	}
+	a := m.attributes()
+	switch unknown = p.condition.unknown(&a); {
+	case unknown == "":
+		met, err = p.condition.met(&a)
+	case peaks[unknown] && m.isRotated():
+		met, err = p.condition.canBeMet(&a)
+	default:
+		met = true
+	}
+	return unknown, met, err
+}
+
+// leaveOut takes motions, by position, out of those that were picked, each for its
+// reason. The error is an EmptyError where no motion is left.
+func (p *picked) leaveOut(reasons map[int]string) error {
+	if len(reasons) == 0 {
+		return nil
+	}
+	type cause struct {
+		record int64
+		reason string
+	}
+	counted := map[cause]bool{}
+	kept := make([]motion, 0, len(p.motions))
+	for i, m := range p.motions {
+		reason, isOut := reasons[i]
+		if !isOut {
+			kept = append(kept, m)
+			continue
 		}
-		p.leftOut[r]++
+		if c := (cause{m.members[0].RecordID, reason}); !counted[c] {
+			counted[c] = true
+			p.leftOut[reason]++
+		}
 	}
+	p.motions = kept
+	return p.finish()
 }
 
-// note counts a record that contributes these motions.
-func (p *picker) note(motions []motion) {
-	p.report.Records++
-	if slices.ContainsFunc(motions, func(m motion) bool { return m.isAssumed() }) {
-		p.assumed++
+// finish counts what the motions are of. The error is an EmptyError where there is
+// none.
+func (p *picked) finish() error {
+	r := SelectionReport{Where: p.report.Where, Component: p.report.Component, Siting: p.report.Siting, Spectra: len(p.motions)}
+	for _, reason := range slices.Sorted(maps.Keys(p.leftOut)) {
+		r.LeftOut = append(r.LeftOut, LeftOut{Reason: reason, Records: p.leftOut[reason]})
 	}
-	r := motions[0].members[0].Record
-	if r.Siting == "unknown" {
-		p.unknown++
+	unknown, assumed := 0, 0 // records of unknown siting; with an assumed right angle
+	events := map[string]bool{}
+	for motions := range p.byRecord() {
+		r.Records++
+		if slices.ContainsFunc(motions, func(m motion) bool { return m.isAssumed() }) {
+			assumed++
+		}
+		record := motions[0].members[0].Record
+		if record.Siting == "unknown" {
+			unknown++
+		}
+		if record.Event != nil {
+			events[record.Event.Code] = true
+		}
 	}
-	if r.Event == nil {
-		return
+	r.Events = len(events)
+	if unknown > 0 && r.Siting != "unknown" {
+		r.Notes = append(r.Notes, countOf(unknown, "record", "records")+" of unknown siting among them")
 	}
-	if p.events == nil {
-		p.events = map[string]bool{}
+	if assumed > 0 {
+		r.Notes = append(r.Notes, countOf(assumed, "record", "records")+" of unknown azimuth among them, the horizontals taken at a right angle")
 	}
-	p.events[r.Event.Code] = true
-}
-
-func (p *picker) finish() (*picked, error) {
-	slices.Sort(p.reasons)
-	for _, r := range p.reasons {
-		p.report.LeftOut = append(p.report.LeftOut, LeftOut{Reason: r, Records: p.leftOut[r]})
-	}
-	p.report.Spectra, p.report.Events = len(p.motions), len(p.events)
-	if p.unknown > 0 && p.selection.Siting != "unknown" {
-		p.report.Notes = append(p.report.Notes, countOf(p.unknown, "record", "records")+" of unknown siting among them")
-	}
-	if p.assumed > 0 {
-		p.report.Notes = append(p.report.Notes, countOf(p.assumed, "record", "records")+" of unknown azimuth among them, the horizontals taken at a right angle")
-	}
+	p.report = r
 	if len(p.motions) == 0 {
-		return &p.picked, &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: p.report.LeftOut, Hint: p.hint()}
+		return &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: r.LeftOut, Hint: p.hint}
 	}
-	return &p.picked, nil
+	return nil
 }
 
-// hint says what to ask where the expression asks a pair for the role of one
+// byRecord yields the motions of one record after another.
+func (p *picked) byRecord() iter.Seq[[]motion] {
+	return runs(p.motions, func(m *motion) int64 { return m.members[0].RecordID })
+}
+
+// hintOf says what to ask where the expression asks a pair for the role of one
 // component, which it never has.
-func (p *picker) hint() string {
+func (p *picker) hintOf() string {
 	if p.selection.Component.IsPair() && p.condition.uses("component") {
 		return fmt.Sprintf("the expression sees the component %q: ask for h1, h2, v or each instead", p.selection.Component)
 	}
@@ -252,6 +292,9 @@ func (p *picker) pairOf(horizontal []*db.HeldComponent, components []db.HeldComp
 	case 2:
 		if c.IsRotated() {
 			lacking = notRotatable(horizontal[0], horizontal[1])
+		}
+		if lacking == "" && p.damaged[components[0].RecordID] {
+			lacking = reasonDamaged
 		}
 	case 1:
 		lacking = "one horizontal component only"

@@ -4,6 +4,7 @@ import (
 	"context"
 	"runtime"
 	"slices"
+	"sync"
 
 	"golang.org/x/sync/errgroup"
 
@@ -48,9 +49,22 @@ func (s *source) details(periodsS []float64) db.Details {
 
 // load returns the SD of the motions at the periods: read from the store where
 // damping and period are on its grid, computed from the stored samples
-// otherwise, and where the store lacks the spectrum of a rotated pair.
-func (s *source) load(ctx context.Context, motions []motion, periodsS []float64) (*ordinates, error) {
+// otherwise, and where the store lacks the spectrum of a rotated pair. What it
+// cannot give is left out of the selection. The error is an EmptyError where that
+// is all.
+func (s *source) load(ctx context.Context, p *picked, periodsS []float64) (*ordinates, error) {
+	o, unfit, err := s.loadMotions(ctx, p.motions, periodsS)
+	if err != nil {
+		return nil, err
+	}
+	return o.without(unfit), p.leaveOut(unfit)
+}
+
+// loadMotions returns beside the SD of the motions the positions of those whose SD
+// cannot be had, and why; theirs has no meaning.
+func (s *source) loadMotions(ctx context.Context, motions []motion, periodsS []float64) (*ordinates, map[int]string, error) {
 	o := newOrdinates(periodsS, len(motions))
+	out := &unfit{reasons: map[int]string{}}
 	var stored, missing []int // positions in periodsS
 	position := s.gridPosition()
 	columns := columnsOf(s.snapshot.Generation.Grid.PeriodsS, periodsS)
@@ -62,16 +76,39 @@ func (s *source) load(ctx context.Context, motions []motion, periodsS []float64)
 		}
 	}
 	if len(stored) > 0 {
-		r := newReader(o, motions, stored, columns)
+		r := newReader(o, motions, out, stored, columns)
 		lacking, err := r.readAll(ctx, s.snapshot, position)
 		if err != nil {
-			return nil, err
+			return nil, nil, err
 		}
-		if err := s.compute(ctx, o, motions, lacking, stored); err != nil {
-			return nil, err
+		if err := s.compute(ctx, o, motions, out, lacking, stored); err != nil {
+			return nil, nil, err
 		}
 	}
-	return o, s.compute(ctx, o, motions, upTo(len(motions)), missing)
+	return o, out.reasons, s.compute(ctx, o, motions, out, upTo(len(motions)), missing)
+}
+
+// unfit notes motions, by position, that cannot be answered for, and why. It is
+// safe for concurrent use.
+type unfit struct {
+	mutex   sync.Mutex
+	reasons map[int]string
+}
+
+// reasonDamaged leaves out what is not in the store as it was stored.
+var reasonDamaged = db.ErrDamaged.Error()
+
+func (u *unfit) add(motion int, reason string) {
+	u.mutex.Lock()
+	defer u.mutex.Unlock()
+	u.reasons[motion] = reason
+}
+
+func (u *unfit) has(motion int) bool {
+	u.mutex.Lock()
+	defer u.mutex.Unlock()
+	_, ok := u.reasons[motion]
+	return ok
 }
 
 // upTo returns 0 … n-1.

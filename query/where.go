@@ -35,9 +35,11 @@ var whereFunctions = []string{
 // everything and uses nothing.
 type where struct {
 	program *vm.Program
-	machine vm.VM
-	used    []int           // positions in numbers of those that the expression uses
-	names   map[string]bool // all that it uses
+	// possible is true wherever program can be, whatever the peaks: see possibleText.
+	possible *vm.Program
+	machine  vm.VM
+	used     []int           // positions in numbers of those that the expression uses
+	names    map[string]bool // all that it uses
 }
 
 // compileWhere checks the expression's names and types. The empty text gives
@@ -68,6 +70,12 @@ func compileWhere(text string) (*where, error) {
 	for i, n := range numbers {
 		if inspector.used[n.name] {
 			w.used = append(w.used, i)
+		}
+	}
+	w.possible = program
+	if w.usesPeaks() {
+		if w.possible, err = expr.Compile(possibleText(text), options...); err != nil {
+			return nil, whereError(err)
 		}
 	}
 	return w, nil
@@ -101,22 +109,32 @@ var wordings = []struct {
 }
 
 // unknown returns the name of the first attribute that the expression uses and
-// the motion lacks, or "".
+// the motion lacks, or "", peaks after all others.
 func (w *where) unknown(a *attributes) string {
+	peak := ""
 	for _, i := range w.used {
-		if !numbers[i].known(a) {
-			return numbers[i].name
+		switch name := numbers[i].name; {
+		case numbers[i].known(a):
+		case !peaks[name]:
+			return name
+		case peak == "":
+			peak = name
 		}
 	}
-	return ""
+	return peak
 }
 
 // uses reports whether the expression uses the attribute.
 func (w *where) uses(name string) bool { return w != nil && w.names[name] }
 
 // met reports whether the motion meets the expression.
-func (w *where) met(a *attributes) (bool, error) {
-	out, err := w.machine.Run(w.program, *a)
+func (w *where) met(a *attributes) (bool, error) { return w.run(w.program, a) }
+
+// canBeMet reports whether a motion of unknown peaks can meet the expression.
+func (w *where) canBeMet(a *attributes) (bool, error) { return w.run(w.possible, a) }
+
+func (w *where) run(program *vm.Program, a *attributes) (bool, error) {
+	out, err := w.machine.Run(program, *a)
 	if err != nil {
 		return false, whereError(err)
 	}

@@ -1,0 +1,145 @@
+package query
+
+import (
+	"bytes"
+	"errors"
+	"slices"
+	"testing"
+
+	"swaybook/db"
+)
+
+const cutSeries = `UPDATE series SET data = substr(data, 1, 20) WHERE component_id IN
+	(SELECT c.id FROM component c JOIN record r ON r.id = c.record_id WHERE r.code = ? AND c.role = 'h2')`
+
+// TestDamagedSamplesAreLeftOut: a series that is damaged stops no question about
+// other records, and its own record is left out with the reason where it is needed.
+func TestDamagedSamplesAreLeftOut(t *testing.T) {
+	roof := pulses("roof", inventedComponent{}, inventedComponent{})
+	roof.siting = "structure"
+	store := newStore(t, handGrid, []inventedRecord{
+		pulses("good", inventedComponent{}, inventedComponent{}), pulses("bad", inventedComponent{}, inventedComponent{}), roof,
+		{code: "stored", siting: "ground", components: pair(1, 1)},
+	})
+	for _, code := range []string{"bad", "roof", "stored"} {
+		alter(t, store, cutSeries, code)
+	}
+	damaged, structure := LeftOut{"damaged in the store", 1}, LeftOut{"siting structure", 1}
+	tests := map[string]struct {
+		where     string
+		component Component
+		damping   float64 // 0.02 is on the grid
+		records   int
+		leftOut   []LeftOut
+	}{
+		"pairs that are not stored":        {"", ComponentRotD50, 0.02, 2, []LeftOut{damaged, structure}},
+		"off the grid":                     {"", ComponentRotD50, 0.03, 1, []LeftOut{{"damaged in the store", 2}, structure}},
+		"single, off the grid":             {"", ComponentH2, 0.03, 1, []LeftOut{{"damaged in the store", 2}, structure}},
+		"the sound one of two":             {"", ComponentH1, 0.03, 3, []LeftOut{structure}},
+		"combined, off the grid":           {"", ComponentGeomean, 0.03, 1, []LeftOut{{"damaged in the store", 2}, structure}},
+		"on the grid":                      {"", ComponentEach, 0.02, 3, []LeftOut{structure}},
+		"peaks":                            {"pga_g > 0", ComponentRotD100, 0.02, 2, []LeftOut{damaged, structure}},
+		"peaks of others":                  {`record != "bad" and record != "roof" and pga_g > 0`, ComponentRotD100, 0.02, 2, nil},
+		"peaks that cannot matter":         {`not (record in ["bad", "roof"] or pga_g < 0)`, ComponentRotD100, 0.02, 2, nil},
+		"peaks, or not":                    {`record == "good" or pgv_m_s > 0 and siting != "structure"`, ComponentRotD50, 0.02, 2, []LeftOut{damaged}},
+		"no peaks, on the grid and single": {"samples > 0", ComponentH2, 0.02, 3, []LeftOut{structure}},
+	}
+	for name, test := range tests {
+		t.Run(name, func(t *testing.T) {
+			r := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Where: test.where, Component: test.component}, Damping: test.damping}).Selection
+			if r.Records != test.records || !slices.Equal(r.LeftOut, test.leftOut) {
+				t.Errorf("%d records, left out %v, want %d, %v", r.Records, r.LeftOut, test.records, test.leftOut)
+			}
+			if want := map[Component]int{ComponentEach: 6}[test.component]; want > 0 && r.Spectra != want {
+				t.Errorf("%d spectra, want %d", r.Spectra, want)
+			}
+		})
+	}
+}
+
+// TestDamagedAnswers: what is left of an answer is that of the sound records, in
+// demands, lists and exports too, and nothing is an answer of its own.
+func TestDamagedAnswers(t *testing.T) {
+	records := func() []inventedRecord {
+		return []inventedRecord{pulses("bad", inventedComponent{level: 1}, inventedComponent{level: 1}), pulses("good", inventedComponent{level: 1, peak: 3}, inventedComponent{level: 1})}
+	}
+	store, sound := newStore(t, handGrid, records()), newStore(t, handGrid, records()[1:])
+	alter(t, store, cutSeries, "bad")
+	want := []LeftOut{{"damaged in the store", 1}}
+	demand := DemandQuestion{Structure: Structure{PeriodS: 0.7, Damping: 0.02}, BandWidth: 0.1}
+	got, err := demand.Ask(t.Context(), store)
+	if err != nil {
+		t.Fatal(err)
+	}
+	other, err := demand.Ask(t.Context(), sound)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got.Quantities[0].Reduction.Max != other.Quantities[0].Reduction.Max || got.Quantities[0].Reduction.Count != 1 || !slices.Equal(got.Selection.LeftOut, want) {
+		t.Errorf("demand %+v of %+v, want %+v", got.Quantities[0].Reduction, got.Selection, other.Quantities[0].Reduction)
+	}
+	list, err := RecordsQuestion{Selection{Component: ComponentRotD50}}.Ask(t.Context(), store)
+	if err != nil || len(list.Rows) != 1 || list.Rows[0].Record != "good" || !slices.Equal(list.Selection.LeftOut, want) {
+		t.Errorf("list %+v, %v", list, err)
+	}
+	export := ExportQuestion{Selection: Selection{Component: ComponentRotD50}, Dampings: []float64{0.02, 0.03}}
+	var text, soundText bytes.Buffer
+	summary, err := export.Write(t.Context(), store, &text)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if _, err := export.Write(t.Context(), sound, &soundText); err != nil {
+		t.Fatal(err)
+	}
+	if text.String() != soundText.String() || summary.Rows != 2*len(handGrid.PeriodsS) || !slices.Equal(summary.Selection.LeftOut, want) {
+		t.Errorf("export of %+v:\n%s\nwant\n%s", summary, &text, &soundText)
+	}
+	alter(t, store, cutSeries, "good")
+	var empty *EmptyError
+	if _, err := demand.Ask(t.Context(), store); !errors.As(err, &empty) || !slices.Equal(empty.LeftOut, []LeftOut{{"damaged in the store", 2}}) {
+		t.Errorf("demand of nothing sound: %v", err)
+	}
+	if _, err := export.Write(t.Context(), store, &text); !errors.As(err, &empty) {
+		t.Errorf("export of nothing sound: %v", err)
+	}
+}
+
+// TestDamagedSpectraAreLeftOut: so are spectra that are cut, garbled or gone.
+func TestDamagedSpectraAreLeftOut(t *testing.T) {
+	const where = ` WHERE role = ? AND damping_position = 0 AND record_id = (SELECT id FROM record WHERE code = 'R2')`
+	for name, damage := range map[string]string{
+		"cut":     `UPDATE spectrum SET sd_m = substr(sd_m, 1, 30)` + where,
+		"garbled": `UPDATE spectrum SET sd_m = CAST(replace(CAST(sd_m AS TEXT), 'e', 'x') AS BLOB)` + where,
+		"gone":    `DELETE FROM spectrum` + where,
+	} {
+		t.Run(name, func(t *testing.T) {
+			store := newStore(t, handGrid, handRecords())
+			alter(t, store, damage, db.RoleH2)
+			for component, spectra := range map[Component]int{ComponentGeomean: 2, ComponentH2: 2, ComponentEach: 6} {
+				r := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Component: component}, Damping: 0.02}).Selection
+				if r.Spectra != spectra || !slices.Contains(r.LeftOut, LeftOut{"damaged in the store", 1}) {
+					t.Errorf("%s: %+v, want %d spectra", component, r, spectra)
+				}
+			}
+		})
+	}
+}
+
+// TestPossibleText: what an expression says where nothing is known of peaks.
+func TestPossibleText(t *testing.T) {
+	for text, want := range map[string]string{
+		`magnitude > 5 and pga_g > 1`:                     `magnitude > 5 and true`,
+		`not (magnitude > 5 or pga_g > 1)`:                `not (magnitude > 5 or false)`,
+		`!(pga_g > 1 && !(pgv_m_s > 1)) || pgd_m + 1 < 2`: `!(false && !true) || true`,
+		`pga_g > 1 ? magnitude > 5 : magnitude > 6`:       `true`,
+		`(pga_g > 1) == (magnitude > 5)`:                  `true`,
+		`record in ["a", "b"] and max(pga_g, 1) > 2`:      `record in ["a", "b"] and true`,
+	} {
+		if got := possibleText(text); got != want {
+			t.Errorf("possibleText(%s) = %s, want %s", text, got, want)
+		}
+		if _, err := compileWhere(text); err != nil {
+			t.Errorf("%s: %v", text, err)
+		}
+	}
+}

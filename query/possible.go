@@ -1,0 +1,48 @@
+package query
+
+import (
+	"github.com/expr-lang/expr/ast"
+	"github.com/expr-lang/expr/parser"
+)
+
+// peaks are the attributes of a rotated pair that may have to be computed from its
+// samples.
+var peaks = map[string]bool{"pga_g": true, "pgv_m_s": true, "pgd_m": true}
+
+// usesPeaks reports whether the expression cannot be decided without peaks.
+func (w *where) usesPeaks() bool { return w.uses("pga_g") || w.uses("pgv_m_s") || w.uses("pgd_m") }
+
+// possibleText is an expression that is true wherever the given one can be, with
+// whatever peaks: each condition on a peak is taken for met, or under "not" for
+// not met. So `station == "A" and pga_g > 1` becomes `station == "A" and true`.
+// The text must be one that compileWhere accepts; "" where that cannot be told.
+func possibleText(text string) string {
+	tree, err := parser.Parse(text)
+	if err != nil {
+		return ""
+	}
+	return supposed(tree.Node, true).String()
+}
+
+// supposed is the condition with what depends on peaks decided as wanted.
+func supposed(node ast.Node, want bool) ast.Node {
+	switch n := node.(type) {
+	case *ast.UnaryNode:
+		if n.Operator == "not" || n.Operator == "!" {
+			return &ast.UnaryNode{Operator: n.Operator, Node: supposed(n.Node, !want)}
+		}
+	case *ast.BinaryNode:
+		switch n.Operator {
+		case "and", "&&", "or", "||":
+			return &ast.BinaryNode{Operator: n.Operator, Left: supposed(n.Left, want), Right: supposed(n.Right, want)}
+		}
+	}
+	used := &inspector{used: map[string]bool{}}
+	ast.Walk(&node, used)
+	for name := range used.used {
+		if peaks[name] {
+			return &ast.BoolNode{Value: want}
+		}
+	}
+	return node
+}
