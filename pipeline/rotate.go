@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 
 	"swaybook/db"
 	"swaybook/pipeline/spectrum"
@@ -18,6 +19,8 @@ type Rotated struct {
 	// Reason says why the pair could not be rotated, in words by which such pairs
 	// can be counted; it is "" where it was. Detail has the particulars.
 	Reason, Detail string
+	// Damaged says that it could not because of damage in the store.
+	Damaged bool
 	// Assumed says that a right angle was assumed between the components, since an
 	// azimuth is unknown.
 	Assumed bool
@@ -44,6 +47,7 @@ func (w *writer) rotate(ctx context.Context) error {
 type rotation struct {
 	pair            db.Pair
 	assumed         bool   // a right angle between the components
+	damaged         bool   // in the store
 	reason, detail  string // why it could not be rotated
 	median, maximum db.Spectra
 }
@@ -84,6 +88,10 @@ func (rot rotation) failed(err error) rotation {
 	rot.reason = err.Error()
 	if e, ok := errors.AsType[*spectrum.PairError](err); ok {
 		rot.reason, rot.detail = e.Reason, e.Detail
+	}
+	if errors.Is(err, db.ErrDamaged) {
+		rot.damaged, rot.reason = true, db.ErrDamaged.Error()
+		rot.detail = strings.TrimPrefix(err.Error(), rot.reason+": ")
 	}
 	return rot
 }
@@ -153,7 +161,7 @@ func (r *rotator) storeBatch(ctx context.Context, batch []rotation) error {
 	r.count += len(batch) - len(settled)
 	for _, rot := range settled {
 		r.count++
-		report := Rotated{Done: r.count, Total: r.total, Record: rot.pair.Code, Assumed: rot.assumed, Reason: rot.reason, Detail: rot.detail}
+		report := Rotated{Done: r.count, Total: r.total, Record: rot.pair.Code, Assumed: rot.assumed, Reason: rot.reason, Detail: rot.detail, Damaged: rot.damaged}
 		r.summary.addRotated(report)
 		r.opts.Rotated(report)
 	}

@@ -302,14 +302,14 @@ func TestPairsThatCannotBeRotated(t *testing.T) {
 				t.Errorf("run %d: %s was read, although it makes no pair", i, p.Code)
 			}
 		}}, options(dir))
-		if got.Rotated != rotated || got.NotRotated != 4 || !got.Complete() {
+		if got.Rotated != rotated || got.NotRotated != 2 || got.Damaged != 2 || !got.Complete() {
 			t.Errorf("run %d: summary = %+v", i, got)
 		}
 		for station, want := range map[string]string{
 			"steps": "horizontal components of different time steps: 0.01 s and 0.02 s", "near": "horizontal components too near in direction: azimuths 0° and 20°",
 			"damaged": "damaged in the store: h2: ", "cut": "damaged in the store: h1: ",
 		} {
-			if r := said["invented-20260312_"+station]; !strings.HasPrefix(r.Reason+": "+r.Detail, want) || r.Total != rotated+4 {
+			if r := said["invented-20260312_"+station]; !strings.HasPrefix(r.Reason+": "+r.Detail, want) || r.Total != rotated+4 || r.Damaged != strings.HasPrefix(want, "damaged") {
 				t.Errorf("run %d: %s: %+v, want %q", i, station, r, want)
 			}
 		}

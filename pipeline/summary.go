@@ -32,6 +32,7 @@ type Summary struct {
 	// Assumed counts those rotated at an assumed right angle.
 	Assumed    int     `json:"rotated_at_assumed_right_angle"`
 	NotRotated int     `json:"not_rotated"` // records whose horizontals make no pair
+	Damaged    int     `json:"damaged"`     // records that are damaged in the store
 	Seconds    float64 `json:"seconds"`
 }
 
@@ -55,6 +56,9 @@ func (s *Summary) add(f FileReport) {
 
 func (s *Summary) addRotated(r Rotated) {
 	switch {
+	case r.Damaged:
+		s.Damaged++
+		return
 	case r.Reason != "":
 		s.NotRotated++
 		return

@@ -164,6 +164,8 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 		return fmt.Errorf("%w after %d files; run the same command again to finish the rest", errInterrupted, summary.Files)
 	case err != nil:
 		return err
+	case summary.Damaged > 0:
+		return fmt.Errorf("%s is damaged (records: %d); ingest the files into a new store with --store", o.store, summary.Damaged)
 	case !summary.Complete():
 		return errRejected
 	}
@@ -295,6 +297,9 @@ func (r ingestReport) printRotation(p *printer) {
 	p.printf("  records rotated                         %7d%s\n", r.Rotated, assumed)
 	if r.NotRotated > 0 {
 		p.printf("  records whose horizontals do not pair   %7d\n", r.NotRotated)
+	}
+	if r.Damaged > 0 {
+		p.printf("  records damaged in the store            %7d\n", r.Damaged)
 	}
 	for _, u := range r.Unfit {
 		detail := ""
