@@ -123,6 +123,8 @@ func setUsageHandling(c *cli.Command) {
 	c.OnUsageError = onUsageError
 	if len(c.Subcommands) > 0 {
 		c.Action = missingCommand
+	} else {
+		c.HideHelpCommand = true // its arguments may be named "help" and "h"
 	}
 	for _, sub := range c.Subcommands {
 		setUsageHandling(sub)
