@@ -39,10 +39,10 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 	if err != nil {
 		return err
 	}
-	id, err := t.insert(ctx, `INSERT INTO component (record_id, role, axis, label, rank, azimuth_deg, channel, step_s, samples, unit, processing,
+	id, err := t.insert(ctx, `INSERT INTO component (record_id, role, axis, label, rank, azimuth_deg, channel, start_at, step_s, samples, unit, processing,
 			low_cut_hz, high_cut_hz, header_peak_m_s2, warnings, source_id, source_line)
-		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
-		recordID, c.Role, c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.Channel, c.StepS, c.Samples, c.Unit, c.Processing,
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
+		recordID, c.Role, c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.Channel, timeText(c.Start), c.StepS, c.Samples, c.Unit, c.Processing,
 		c.LowCutHz, c.HighCutHz, c.HeaderPeak, string(warnings), c.SourceID, c.SourceLine)
 	if err != nil {
 		return fmt.Errorf("store component: %w", err)

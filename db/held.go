@@ -27,7 +27,7 @@ type Details uint
 // What can be asked for.
 const (
 	DetailRecord  Details = 1 << iota // the rest of Record
-	DetailMotion                      // AzimuthDeg and StepS
+	DetailMotion                      // AzimuthDeg, StepS and Start
 	DetailPeaks                       // Peaks
 	DetailChannel                     // ID and the rest of Component, the source file's description too
 	AllDetails    = DetailRecord | DetailMotion | DetailPeaks | DetailChannel
@@ -78,6 +78,9 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 			return nil, fmt.Errorf("read components: %w", err)
 		}
 		v.Record = records[v.RecordID]
+		if v.Start, err = parseTime(v.start); err != nil {
+			return nil, err
+		}
 		if v.warnings != "" {
 			if err := json.Unmarshal([]byte(v.warnings), &v.Warnings); err != nil {
 				return nil, fmt.Errorf("read components: %w", err)
@@ -91,7 +94,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 // componentRow is a component as SQL gives it.
 type componentRow struct {
 	HeldComponent
-	warnings string
+	start, warnings string
 }
 
 // columns are what is read of a component, and where it goes. Without details
@@ -99,8 +102,8 @@ type componentRow struct {
 func (v *componentRow) columns(d Details) (names string, into []any) {
 	names, into = `c.record_id, c.role`, []any{&v.RecordID, &v.Role}
 	if d&DetailMotion != 0 {
-		names += `, c.azimuth_deg, c.step_s`
-		into = append(into, &v.AzimuthDeg, &v.StepS)
+		names += `, c.azimuth_deg, c.step_s, coalesce(c.start_at, '')`
+		into = append(into, &v.AzimuthDeg, &v.StepS, &v.start)
 	}
 	if d&DetailPeaks != 0 {
 		names += `, pga.value, pgv.value, pgd.value`

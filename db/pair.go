@@ -4,6 +4,7 @@ import (
 	"context"
 	"database/sql"
 	"fmt"
+	"time"
 )
 
 // Pair is a record's two horizontals, h1 and h2.
@@ -19,6 +20,7 @@ type PairComponent struct {
 	StepS        float64
 	AzimuthDeg   float64 // where known
 	AzimuthKnown bool
+	Start        time.Time // UTC; zero where unknown
 }
 
 // Unrotated returns the pairs of the generation's records that lack what is
@@ -38,8 +40,8 @@ func (t *Tx) IsUnrotated(ctx context.Context, generationID int64, p Pair) (bool,
 // an index and all that there is to do in a store that is complete.
 func unrotated(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Pair, error) {
 	rows, err := q.QueryContext(ctx, `SELECT r.id, r.code,
-			a.id, a.step_s, coalesce(a.azimuth_deg, 0), a.azimuth_deg IS NOT NULL,
-			b.id, b.step_s, coalesce(b.azimuth_deg, 0), b.azimuth_deg IS NOT NULL
+			a.id, a.step_s, coalesce(a.azimuth_deg, 0), a.azimuth_deg IS NOT NULL, coalesce(a.start_at, ''),
+			b.id, b.step_s, coalesce(b.azimuth_deg, 0), b.azimuth_deg IS NOT NULL, coalesce(b.start_at, '')
 		FROM record r
 		CROSS JOIN component a ON a.record_id = r.id AND a.role = '`+RoleH1+`'
 		CROSS JOIN component b ON b.record_id = r.id AND b.role = '`+RoleH2+`'
@@ -49,12 +51,26 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 	if err != nil {
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)
 	}
-	pairs, err := collect(rows, func(p *Pair) []any {
-		a, b := &p.First, &p.Second
-		return []any{&p.RecordID, &p.Code, &a.ID, &a.StepS, &a.AzimuthDeg, &a.AzimuthKnown, &b.ID, &b.StepS, &b.AzimuthDeg, &b.AzimuthKnown}
+	type row struct {
+		Pair
+		first, second string // starts
+	}
+	found, err := collect(rows, func(v *row) []any {
+		a, b := &v.First, &v.Second
+		return []any{&v.RecordID, &v.Code, &a.ID, &a.StepS, &a.AzimuthDeg, &a.AzimuthKnown, &v.first, &b.ID, &b.StepS, &b.AzimuthDeg, &b.AzimuthKnown, &v.second}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)
+	}
+	pairs := make([]Pair, len(found))
+	for i, v := range found {
+		if v.First.Start, err = parseTime(v.first); err != nil {
+			return nil, err
+		}
+		if v.Second.Start, err = parseTime(v.second); err != nil {
+			return nil, err
+		}
+		pairs[i] = v.Pair
 	}
 	return pairs, nil
 }

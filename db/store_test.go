@@ -38,6 +38,9 @@ func update(t *testing.T, s *Store, f func(ctx context.Context, tx *Tx) error) {
 	}
 }
 
+// startsAt is when all invented components start.
+var startsAt = time.Date(2026, 3, 12, 10, 15, 0, 250e6, time.UTC)
+
 // add stores an invented component whose SD at damping d and period p is
 // base + 10·d + p.
 func add(ctx context.Context, tx *Tx, g Generation, code, role string, base float64) error {
@@ -64,7 +67,7 @@ func add(ctx context.Context, tx *Tx, g Generation, code, role string, base floa
 		computed.SD = append(computed.SD, sd)
 	}
 	c := Component{Role: role, Axis: "horizontal", Label: role, StepS: 0.01, Samples: len(samples), Unit: "m/s2", Processing: "corrected",
-		AzimuthDeg: number(30), SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
+		AzimuthDeg: number(30), Start: startsAt, SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
 	return tx.AddComponent(ctx, recordID, c, data, digest, g.ID, computed)
 }
 

@@ -78,6 +78,7 @@ type Component struct {
 	Rank       int    // 1 or 2 where the label ranks a horizontal without azimuth
 	AzimuthDeg *float64
 	Channel    string
+	Start      time.Time // of the first sample, UTC; zero where unknown
 	StepS      float64
 	Samples    int
 	Unit       string // of the file's numbers

@@ -83,6 +83,7 @@ CREATE TABLE component (
     rank            INTEGER NOT NULL CHECK (rank IN (0, 1, 2)),
     azimuth_deg     REAL,
     channel         TEXT NOT NULL,
+    start_at        TEXT,
     step_s          REAL NOT NULL CHECK (step_s > 0),
     samples         INTEGER NOT NULL CHECK (samples > 0),
     unit            TEXT NOT NULL,

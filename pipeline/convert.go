@@ -61,7 +61,7 @@ func componentOf(s solved, role string) db.Component {
 	c := s.channel
 	return db.Component{
 		Role: role, Axis: axes[c.Orientation.Axis], Label: c.Orientation.Label, Rank: c.Orientation.Order,
-		AzimuthDeg: pointer(c.Orientation.AzimuthDeg), Channel: c.ChannelCode, StepS: c.StepS, Samples: s.samples, Unit: c.Unit,
+		AzimuthDeg: pointer(c.Orientation.AzimuthDeg), Channel: c.ChannelCode, Start: c.Start, StepS: c.StepS, Samples: s.samples, Unit: c.Unit,
 		Processing: string(c.Processing), LowCutHz: pointer(c.LowCutHz), HighCutHz: pointer(c.HighCutHz),
 		HeaderPeak: pointer(c.HeaderPeak), Warnings: c.Warnings, SourceLine: c.Line,
 	}

@@ -80,7 +80,7 @@ func (r *rotator) process(ctx context.Context, p db.Pair) (rotation, error) {
 }
 
 func horizontalOf(c db.PairComponent) spectrum.Horizontal {
-	return spectrum.Horizontal{StepS: c.StepS, AzimuthDeg: c.AzimuthDeg, AzimuthKnown: c.AzimuthKnown}
+	return spectrum.Horizontal{StepS: c.StepS, AzimuthDeg: c.AzimuthDeg, AzimuthKnown: c.AzimuthKnown, Start: c.Start}
 }
 
 // failed is the rotation with the reason why there is none.

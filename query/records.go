@@ -134,13 +134,22 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		Network: orNull(station.Network), Station: orNull(station.Code), StationName: orNull(station.Name),
 		StationLatitude: station.LatitudeDeg, StationLongitude: station.LongitudeDeg, Vs30MPS: station.Vs30MPS,
 		DistanceKM: c.Record.DistanceKM, Instrument: orNull(c.Record.Instrument), Siting: c.Record.Siting,
-		Component: c.Role, Channel: orNull(c.Channel), AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(c.Record.Start),
+		Component: c.Role, Channel: orNull(c.Channel), AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(startOf(c)),
 		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
 		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
 		Unit: orNull(c.Unit), Processing: orNull(c.Processing), LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz,
 		Format: c.SourceFormat, Source: c.SourcePath, Line: lineOrNull(c.SourceLine), SHA256: c.SourceSHA256,
 		Warnings: append([]string{}, c.Warnings...),
 	}
+}
+
+// startOf is the time of the component's first sample, or of its record's where
+// that alone is known.
+func startOf(c *db.HeldComponent) time.Time {
+	if c.Start.IsZero() {
+		return c.Record.Start
+	}
+	return c.Start
 }
 
 // RejectionRow is a file, or a channel of it, that could not be stored.

@@ -28,7 +28,7 @@ func between(first, second *db.HeldComponent) (deg float64, assumed bool, err er
 }
 
 func horizontal(c *db.HeldComponent) spectrum.Horizontal {
-	h := spectrum.Horizontal{StepS: c.StepS}
+	h := spectrum.Horizontal{StepS: c.StepS, Start: c.Start}
 	if c.AzimuthDeg != nil {
 		h.AzimuthDeg, h.AzimuthKnown = *c.AzimuthDeg, true
 	}

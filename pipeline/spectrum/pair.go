@@ -3,6 +3,7 @@ package spectrum
 import (
 	"fmt"
 	"math"
+	"time"
 )
 
 // rightAngleDeg is how far from a right angle the difference of two azimuths may
@@ -15,11 +16,13 @@ type Horizontal struct {
 	StepS        float64 // s between samples
 	AzimuthDeg   float64 // degrees clockwise from north
 	AzimuthKnown bool
+	Start        time.Time // of the first sample; zero where unknown
 }
 
 // The reasons of a PairError.
 const (
 	ReasonSteps      = "horizontal components of different time steps"
+	ReasonStarts     = "horizontal components that start at different times"
 	ReasonDirections = "horizontal components too near in direction"
 )
 
@@ -36,6 +39,12 @@ func (e *PairError) Error() string { return e.Reason + ": " + e.Detail }
 func Between(first, second Horizontal) (deg float64, assumed bool, err error) {
 	if first.StepS != second.StepS {
 		return 0, false, &PairError{ReasonSteps, fmt.Sprintf("%g s and %g s", first.StepS, second.StepS)}
+	}
+	if !first.Start.IsZero() && !second.Start.IsZero() {
+		// Half a step may be rounding of what headers say.
+		if apart := second.Start.Sub(first.Start).Abs(); apart.Seconds() > 0.5*first.StepS {
+			return 0, false, &PairError{ReasonStarts, fmt.Sprintf("%v apart", apart)}
+		}
 	}
 	if !first.AzimuthKnown || !second.AzimuthKnown {
 		return 90, true, nil

@@ -5,6 +5,7 @@ import (
 	"math"
 	"slices"
 	"testing"
+	"time"
 )
 
 // TestPairPadsAndTurns goes through the ways in which a pair can be unfit.
@@ -67,6 +68,13 @@ func TestPairRefusesNearDirections(t *testing.T) {
 func TestBetween(t *testing.T) {
 	at := func(deg float64) Horizontal { return Horizontal{StepS: 0.01, AzimuthDeg: deg, AzimuthKnown: true} }
 	unknown := Horizontal{StepS: 0.01}
+	started := func(seconds float64) Horizontal {
+		h := at(90)
+		h.Start = time.Date(2026, 3, 12, 4, 5, 6, 0, time.UTC).Add(time.Duration(seconds * 1e9))
+		return h
+	}
+	north := started(0)
+	north.AzimuthDeg = 0
 	tests := []struct {
 		name          string
 		first, second Horizontal
@@ -84,6 +92,11 @@ func TestBetween(t *testing.T) {
 		{"near", at(10), at(30), 0, false, ReasonDirections, "azimuths 10° and 30°"},
 		{"opposite", at(10), at(190), 0, false, ReasonDirections, "azimuths 10° and 190°"},
 		{"no number", at(10), at(math.NaN()), 0, false, ReasonDirections, "azimuths 10° and NaN°"},
+		{"starts half a step apart", north, started(0.005), 90, false, "", ""},
+		{"starts half a step apart, the other way round", north, started(-0.005), 90, false, "", ""},
+		{"one start unknown", at(0), started(7), 90, false, "", ""},
+		{"starts more apart", north, started(0.0051), 0, false, ReasonStarts, "5.1ms apart"},
+		{"starts more apart, the other way round", north, started(-0.5), 0, false, ReasonStarts, "500ms apart"},
 		{"steps, before all else", at(10), Horizontal{StepS: 0.02}, 0, false, ReasonSteps, "0.01 s and 0.02 s"},
 	}
 	for _, test := range tests {
