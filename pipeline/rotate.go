@@ -121,7 +121,7 @@ func rotatePair(solvers *solvers, stepS, betweenDeg float64, first, second db.St
 		sdB = solver.SD(nil, pair.B)
 	}
 	sd50, sd100 := solver.RotD(pair.A, pair.B, sdA, sdB)
-	peaks50, peaks100 := spectrum.RotDPeaks(stepS, pair.A, pair.B)
+	peaks50, peaks100 := pair.Peaks(stepS)
 	if !areFinite(append(slices.Clone(sd100), peaks100.PGA, peaks100.PGV, peaks100.PGD)) {
 		return median, maximum, errors.New("the motion is beyond the range of numbers")
 	}

@@ -136,7 +136,7 @@ func compareRotated(t *testing.T, store *db.Store, first, second []float64, betw
 		t.Fatal(err)
 	}
 	sd50, sd100 := solver.RotD(p.A, p.B, solver.SD(nil, p.A), solver.SD(nil, p.B))
-	peaks50, peaks100 := spectrum.RotDPeaks(0.01, p.A, p.B)
+	peaks50, peaks100 := p.Peaks(0.01)
 	for role, want := range map[string][]float64{db.RoleRotD50: sd50, db.RoleRotD100: sd100} {
 		if got := stored(t, store, role); !slices.Equal(got, want) {
 			t.Errorf("%s = %v, want %v", role, got, want)

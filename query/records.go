@@ -93,12 +93,13 @@ func rowOf(m *motion) RecordRow {
 }
 
 // takePair makes the row of a pair's first component that of the pair: numbers
-// as an expression sees them, and texts of both.
+// as an expression sees them, but for the length, which is that of the motion, the
+// longer one; and texts of both.
 func (r *RecordRow) takePair(m *motion) {
 	second := recordRow(m.members[1])
 	a := m.attributes()
 	r.Component, r.AzimuthDeg, r.Line = a.Component, nil, nil
-	r.StepS, r.Samples, r.DurationS = a.StepS, a.Samples, a.DurationS
+	r.StepS, r.Samples, r.DurationS = a.StepS, max(r.Samples, second.Samples), max(r.DurationS, second.DurationS)
 	r.PGA, r.PGV, r.PGD = a.PGA, a.PGV, a.PGD
 	r.LowCutHz, r.HighCutHz = knownOrNull(a.LowCutHz), knownOrNull(a.HighCutHz)
 	r.Channel, r.Unit = orNull(both(orEmpty(r.Channel), orEmpty(second.Channel))), orNull(both(orEmpty(r.Unit), orEmpty(second.Unit)))

@@ -138,7 +138,7 @@ func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (*spec
 	if err != nil {
 		return nil, fmt.Errorf("compute peaks of %s %s: %w", m.record(), m.role, err)
 	}
-	median, maximum := spectrum.RotDPeaks(m.members[0].StepS, p.A, p.B)
+	median, maximum := p.Peaks(m.members[0].StepS)
 	if Component(m.role) == ComponentRotD100 {
 		return &maximum, nil
 	}

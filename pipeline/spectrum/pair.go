@@ -65,6 +65,8 @@ type Pair struct {
 	// ground then comes to rest along the line to the first of them, where without
 	// them it is at rest at once.
 	ChangedA, ChangedB bool
+
+	common int // samples of the shorter component
 }
 
 // NewPair makes two components a pair. The shorter is followed by zeros, since the
@@ -77,6 +79,7 @@ func NewPair(first, second []float64, betweenDeg float64) (p Pair, err error) {
 	n := max(len(first), len(second))
 	p.ChangedA, p.ChangedB = len(first) < n, len(second) < n
 	p.A, p.B = followedByZeros(first, n), followedByZeros(second, n)
+	p.common = min(len(first), len(second))
 	if math.Abs(math.Remainder(betweenDeg-90, 180)) < rightAngleDeg {
 		return p, nil
 	}
@@ -85,6 +88,21 @@ func NewPair(first, second []float64, betweenDeg float64) (p Pair, err error) {
 	}
 	p.ChangedB = true
 	return p, nil
+}
+
+// Peaks is RotDPeaks of the pair, but that PGV and PGD are taken where both
+// components were recorded. A velocity that a component has at its end is one of
+// its baseline as a rule, and would carry the ground away for as long as the other
+// goes on.
+func (p Pair) Peaks(stepS float64) (rotd50, rotd100 GroundPeaks) {
+	rotd50, rotd100 = RotDPeaks(stepS, p.A, p.B)
+	if p.common == len(p.A) {
+		return rotd50, rotd100
+	}
+	median, maximum := RotDPeaks(stepS, p.A[:p.common], p.B[:p.common])
+	rotd50.PGV, rotd50.PGD = median.PGV, median.PGD
+	rotd100.PGV, rotd100.PGD = maximum.PGV, maximum.PGD
+	return rotd50, rotd100
 }
 
 // followedByZeros returns the samples with zeros after them up to a length of n.

@@ -115,3 +115,57 @@ func TestBetween(t *testing.T) {
 		})
 	}
 }
+
+// TestPairPeaksDoNotCoast: a push of 1 m/s² for 1 s moves the ground by half a
+// metre; that its velocity is not taken back is an end of the record, not a motion
+// of the ground over the minute that the other component goes on.
+func TestPairPeaksDoNotCoast(t *testing.T) {
+	const stepS = 0.01
+	long, push := make([]float64, 6000), make([]float64, 101)
+	long[5000] = 3
+	for i := range push {
+		push[i] = 1
+	}
+	for _, order := range [][2][]float64{{long, push}, {push, long}} {
+		p, err := NewPair(order[0], order[1], 90)
+		if err != nil {
+			t.Fatal(err)
+		}
+		median, maximum := p.Peaks(stepS)
+		want := GroundPeaks{PGA: 3, PGV: 1, PGD: 0.5}
+		if math.Abs(maximum.PGA-want.PGA) > 1e-12 || math.Abs(maximum.PGV-want.PGV) > 1e-12 || math.Abs(maximum.PGD-want.PGD) > 1e-12 {
+			t.Errorf("maximum %+v, want %+v", maximum, want)
+		}
+		// Half of all directions are within 45° of a line.
+		if d := want.PGD * math.Sqrt2 / 2; math.Abs(median.PGD/d-1) > 0.01 || math.Abs(median.PGV/(2*d)-1) > 0.01 {
+			t.Errorf("median %+v, want PGD %g", median, d)
+		}
+	}
+}
+
+// TestPairPeaksOfEqualLengths: without zeros they are those of RotDPeaks; with
+// some, PGA is that of the whole and the rest that of what is common.
+func TestPairPeaksOfEqualLengths(t *testing.T) {
+	x, y := shaken(1, 60), shaken(2, 60)
+	for _, between := range []float64{90, 60} {
+		p, err := NewPair(x, y, between)
+		if err != nil {
+			t.Fatal(err)
+		}
+		median, maximum := p.Peaks(0.01)
+		if m50, m100 := RotDPeaks(0.01, p.A, p.B); median != m50 || maximum != m100 {
+			t.Errorf("%g°: %+v and %+v, want %+v and %+v", between, median, maximum, m50, m100)
+		}
+		cut, err := NewPair(x, y[:40], between)
+		if err != nil {
+			t.Fatal(err)
+		}
+		median, maximum = cut.Peaks(0.01)
+		whole50, whole100 := RotDPeaks(0.01, cut.A, cut.B)
+		common50, common100 := RotDPeaks(0.01, p.A[:40], p.B[:40])
+		common50.PGA, common100.PGA = whole50.PGA, whole100.PGA
+		if median != common50 || maximum != common100 {
+			t.Errorf("%g° and cut: %+v and %+v, want %+v and %+v", between, median, maximum, common50, common100)
+		}
+	}
+}
