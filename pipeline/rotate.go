@@ -30,17 +30,31 @@ type Rotated struct {
 // for every record that has two horizontals and lacks that, from the stored
 // samples and spectra. So it does not matter whether both came in this run, in two
 // runs, or before a run that was stopped. A pair that cannot be rotated is
-// reported and left alone.
+// reported and left alone. With SkipRotation those that can be are counted.
 func (w *writer) rotate(ctx context.Context) error {
 	pairs, err := w.store.Unrotated(ctx, w.run.generation.ID)
 	if err != nil {
 		return err
 	}
+	if w.opts.SkipRotation {
+		w.summary.Unrotated = countRotatable(pairs)
+		return nil
+	}
+	w.summary.Unrotated = len(pairs)
 	r := &rotator{writer: w, total: len(pairs)}
 	return stage[db.Pair, rotation]{
 		workers: w.opts.Workers, clock: w.opts.Clock, process: r.process,
 		weigh: func(rotation) int { return 1 }, store: r.storeBatch,
 	}.run(ctx, pairs)
+}
+
+func countRotatable(pairs []db.Pair) (n int) {
+	for _, p := range pairs {
+		if _, _, err := spectrum.Between(horizontalOf(p.First), horizontalOf(p.Second)); err == nil {
+			n++
+		}
+	}
+	return n
 }
 
 // rotation is a pair with what was computed of it over all directions.
@@ -158,6 +172,7 @@ func (r *rotator) storeBatch(ctx context.Context, batch []rotation) error {
 	if err != nil {
 		return err
 	}
+	r.summary.Unrotated -= len(settled)
 	r.count += len(batch) - len(settled)
 	for _, rot := range settled {
 		r.count++

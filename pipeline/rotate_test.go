@@ -210,7 +210,7 @@ func TestRotationDoesNotDependOnTheRuns(t *testing.T) {
 		"a run without rotation": func(t *testing.T, store *db.Store) int {
 			opts := options(dir)
 			opts.SkipRotation = true
-			if got := run(t, store, opts); got.Rotated != 0 {
+			if got := run(t, store, opts); got.Rotated != 0 || got.Unrotated != records {
 				t.Errorf("summary = %+v", got)
 			}
 			return 0
@@ -230,6 +230,9 @@ func TestRotationDoesNotDependOnTheRuns(t *testing.T) {
 				opts.Clock = ticking(600 * time.Millisecond) // one item a batch
 				opts.Rotated = func(Rotated) { cancel() }
 			})
+			if summary.Unrotated != records-summary.Rotated {
+				t.Errorf("summary = %+v, want the rest of %d to be left", summary, records)
+			}
 			if summary.Rotated == 0 || summary.Rotated == records {
 				t.Fatalf("%d records rotated before the stop; the test wants some but not all", summary.Rotated)
 			}
@@ -243,7 +246,7 @@ func TestRotationDoesNotDependOnTheRuns(t *testing.T) {
 			if got := len(rotated(t, store)); got != n {
 				t.Errorf("%d records rotated before the last run, want %d", got, n)
 			}
-			if got := run(t, store, options(dir)); got.Rotated != records-n || got.NotRotated != 0 {
+			if got := run(t, store, options(dir)); got.Rotated != records-n || got.NotRotated != 0 || got.Unrotated != 0 {
 				t.Errorf("summary of the last run = %+v, want %d rotated", got, records-n)
 			}
 			if !reflect.DeepEqual(dump(t, store), want) {

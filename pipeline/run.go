@@ -39,7 +39,7 @@ type Options struct {
 	// Progress is called by the writer after each file, in path order; may be
 	// nil.
 	Progress func(Progress)
-	// SkipRotation leaves out the second stage; a later run makes up for it.
+	// SkipRotation leaves the second stage to a later run.
 	SkipRotation bool
 	// Rotated is called by the writer after each record of the second stage, in
 	// the order in which they were stored; may be nil.
@@ -69,7 +69,7 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	}
 	w := newWriter(store, run, opts, len(files))
 	err = w.files(ctx, files)
-	if err == nil && !opts.SkipRotation {
+	if err == nil {
 		err = w.rotate(ctx)
 	}
 	return w.finish(ctx, err)

@@ -30,10 +30,13 @@ type Summary struct {
 	Records     int `json:"records"` // new records
 	Rotated     int `json:"rotated"` // records
 	// Assumed counts those rotated at an assumed right angle.
-	Assumed    int     `json:"rotated_at_assumed_right_angle"`
-	NotRotated int     `json:"not_rotated"` // records whose horizontals make no pair
-	Damaged    int     `json:"damaged"`     // records that are damaged in the store
-	Seconds    float64 `json:"seconds"`
+	Assumed    int `json:"rotated_at_assumed_right_angle"`
+	NotRotated int `json:"not_rotated"` // records whose horizontals make no pair
+	Damaged    int `json:"damaged"`     // records that are damaged in the store
+	// Unrotated counts the pairs left to a later run: all where that was asked for,
+	// those not reached by a run that was stopped while it rotated.
+	Unrotated int     `json:"left_to_rotate"`
+	Seconds   float64 `json:"seconds"`
 }
 
 func (s *Summary) add(f FileReport) {

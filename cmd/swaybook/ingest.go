@@ -161,7 +161,7 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 	}
 	switch {
 	case err != nil && ctx.Err() != nil:
-		return fmt.Errorf("%w after %d files; run the same command again to finish the rest", errInterrupted, summary.Files)
+		return interruption(summary)
 	case err != nil:
 		return err
 	case summary.Damaged > 0:
@@ -170,6 +170,16 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 		return errRejected
 	}
 	return nil
+}
+
+// interruption says how far a run came that somebody stopped.
+func interruption(s pipeline.Summary) error {
+	how := fmt.Sprintf("after %d files", s.Files)
+	if s.Unrotated > 0 {
+		done := s.Rotated + s.NotRotated + s.Damaged
+		how = fmt.Sprintf("while rotating, %d of %d records", done, done+s.Unrotated)
+	}
+	return fmt.Errorf("%w %s; run the same command again to finish the rest", errInterrupted, how)
 }
 
 // ingestReport is what the command prints, as text and as JSON.
@@ -187,6 +197,8 @@ type ingestReport struct {
 	Unfit []reasonCount `json:"not_rotated_by_reason"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
+
+	skipped bool // rotation, since that was asked for
 }
 
 // causeCount counts the rejections of one cause, its particulars left out.
@@ -221,7 +233,7 @@ type fileNote struct {
 func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) ingestReport {
 	m := o.monitor
 	r := ingestReport{
-		Store: o.store, Summary: summary, ByCause: []causeCount{}, Warnings: []warningCount{}, Unfit: []reasonCount{}, Catalogue: []string{},
+		Store: o.store, Summary: summary, skipped: o.pipeline.SkipRotation, ByCause: []causeCount{}, Warnings: []warningCount{}, Unfit: []reasonCount{}, Catalogue: []string{},
 		SkippedFiles: m.skipped.files, SkippedOmitted: m.skipped.omitted, RejectedFiles: m.rejected.files, RejectedOmitted: m.rejected.omitted,
 	}
 	for _, w := range m.warnings {
@@ -294,7 +306,14 @@ func (r ingestReport) printRotation(p *printer) {
 	if r.Assumed > 0 {
 		assumed = fmt.Sprintf("  of %d an azimuth is unknown, a right angle was assumed", r.Assumed)
 	}
+	if r.skipped {
+		p.printf("  records left to rotate in a later run   %7d\n", r.Unrotated)
+		return
+	}
 	p.printf("  records rotated                         %7d%s\n", r.Rotated, assumed)
+	if r.Unrotated > 0 {
+		p.printf("  records left to rotate                  %7d\n", r.Unrotated)
+	}
 	if r.NotRotated > 0 {
 		p.printf("  records whose horizontals do not pair   %7d\n", r.NotRotated)
 	}
