@@ -53,13 +53,13 @@ type reader struct {
 	catalogue *ingest.Catalogue
 	own       map[string]string // absolute path to reason
 	hints     ingest.Hints
-	solvers   *solvers
+	solvers   solvers
 }
 
 func newReader(store Store, opts Options, grid db.Grid) *reader {
 	r := &reader{
 		store: store, catalogue: opts.Catalogue, own: map[string]string{}, hints: opts.Hints,
-		solvers: &solvers{grid: grid, byStep: map[float64]*spectrum.Solver{}},
+		solvers: newSolvers(grid),
 	}
 	for name, reason := range opts.Own {
 		r.own[absolute(name)] = reason
@@ -160,7 +160,7 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 }
 
 func (r *reader) solve(c ingest.Channel) (solved, error) {
-	solver, err := r.solvers.get(c.StepS)
+	solver, err := r.solvers.Get(c.StepS)
 	if err != nil {
 		return solved{}, err
 	}

@@ -111,7 +111,7 @@ func (rot rotation) failed(err error) rotation {
 }
 
 // rotatePair computes the rotated spectra and measures of a pair of equal steps.
-func rotatePair(solvers *solvers, stepS, betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
+func rotatePair(solvers solvers, stepS, betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
 	a, sdA, err := first.Decode()
 	if err != nil {
 		return median, maximum, err
@@ -120,7 +120,7 @@ func rotatePair(solvers *solvers, stepS, betweenDeg float64, first, second db.St
 	if err != nil {
 		return median, maximum, err
 	}
-	solver, err := solvers.get(stepS)
+	solver, err := solvers.Get(stepS)
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}

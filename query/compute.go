@@ -4,7 +4,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"sync"
 
 	"swaybook/db"
 	"swaybook/pipeline/spectrum"
@@ -22,17 +21,21 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 	for i, p := range missing {
 		oscillators[i] = spectrum.Oscillator{PeriodS: o.periodsS[p], Damping: s.damping}
 	}
-	solvers := &solvers{method: s.method, oscillators: oscillators}
+	solvers := spectrum.NewSolvers(s.method, oscillators)
 	return inParallel(ctx, len(which), func(ctx context.Context, k int) error {
 		m := &motions[which[k]]
 		if out.has(which[k]) {
 			return nil
 		}
-		err := solvers.solve(ctx, s.snapshot, m, func(sd []float64, isFirst bool) {
+		err := solve(ctx, solvers, s.snapshot, m, func(sd []float64, isFirst bool) {
 			o.put(which[k], m, isFirst, missing, sd)
 		})
 		if errors.Is(err, db.ErrDamaged) {
 			out.add(which[k], reasonDamaged)
+			return nil
+		}
+		if step, ok := errors.AsType[*spectrum.StepError](err); ok {
+			out.add(which[k], step.Error())
 			return nil
 		}
 		if err != nil {
@@ -42,35 +45,11 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 	})
 }
 
-// solvers makes one solver a sampling step, when it is first needed.
-type solvers struct {
-	method      Method
-	oscillators []spectrum.Oscillator
-	mutex       sync.Mutex
-	byStep      map[float64]func() (*spectrum.Solver, error)
-}
-
-func (s *solvers) get(stepS float64) (*spectrum.Solver, error) {
-	s.mutex.Lock()
-	if s.byStep == nil {
-		s.byStep = map[float64]func() (*spectrum.Solver, error){}
-	}
-	build, ok := s.byStep[stepS]
-	if !ok {
-		build = sync.OnceValues(func() (*spectrum.Solver, error) {
-			return spectrum.NewSolver(s.method, stepS, s.oscillators)
-		})
-		s.byStep[stepS] = build
-	}
-	s.mutex.Unlock()
-	return build()
-}
-
 // solve hands over the SD, one an oscillator, of what the motion is made of: of
 // each component, or of the rotated pair at once.
-func (s *solvers) solve(ctx context.Context, snapshot *db.Snapshot, m *motion, put func(sd []float64, isFirst bool)) error {
+func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot, m *motion, put func(sd []float64, isFirst bool)) error {
 	for k, c := range m.members {
-		solver, err := s.get(c.StepS)
+		solver, err := solvers.Get(c.StepS)
 		if err != nil {
 			return err
 		}
