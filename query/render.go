@@ -82,7 +82,7 @@ func (r *SelectionReport) Remarks() string {
 // heading describes the selection in one line.
 func (r *SelectionReport) heading() string {
 	text := fmt.Sprintf("%s, %s, %s; component %s; siting %s", countOf(r.Records, "record", "records"),
-		countOf(r.Spectra, "spectrum", "spectra"), countOf(r.Events, "event", "events"), r.Component, r.Siting)
+		countOf(r.Spectra, "spectrum", "spectra"), countOf(r.Events, "event", "events"), r.Component.inWords(), r.Siting)
 	if r.Where != "" {
 		text += "; where " + r.Where
 	}

@@ -236,11 +236,17 @@ func (p *picked) byRecord() iter.Seq[[]motion] {
 	return runs(p.motions, func(m *motion) int64 { return m.members[0].RecordID })
 }
 
-// hintOf says what to ask where the expression asks a pair for the role of one
-// component, which it never has.
+// hintOf says what to ask where the expression asks a pair for what only one
+// component has.
 func (p *picker) hintOf() string {
-	if p.selection.Component.IsPair() && p.condition.uses("component") {
-		return fmt.Sprintf("the expression sees the component %q: ask for h1, h2, v or each instead", p.selection.Component)
+	const instead = ": ask for h1, h2, v or each instead"
+	switch {
+	case !p.selection.Component.IsPair():
+		return ""
+	case p.condition.uses("component"):
+		return fmt.Sprintf("the expression sees the component %q", p.selection.Component) + instead
+	case p.condition.uses("azimuth_deg"):
+		return "azimuth_deg of a pair is unknown" + instead
 	}
 	return ""
 }

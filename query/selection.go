@@ -66,6 +66,17 @@ func (c Component) IsPair() bool {
 // IsRotated reports whether a motion is a horizontal pair over all directions.
 func (c Component) IsRotated() bool { return c == ComponentRotD50 || c == ComponentRotD100 }
 
+// inWords explains the names that need it.
+func (c Component) inWords() string {
+	switch c {
+	case ComponentRotD50:
+		return "rotd50 (median over all directions)"
+	case ComponentRotD100:
+		return "rotd100 (maximum over all directions)"
+	}
+	return string(c)
+}
+
 // Siting says which sitings of instruments a selection takes: "all", or a list
 // separated by commas of free-field, ground, structure, borehole and unknown.
 // In a list, "ground" stands for what is taken as ground motion: free-field,

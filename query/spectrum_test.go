@@ -158,7 +158,7 @@ func TestEmptySelection(t *testing.T) {
 	}{
 		{Selection{Where: "magnitude > 9"}, "nothing selected: the store holds 6 records; 5 records do not meet the expression; 1 record left out: magnitude unknown"},
 		{Selection{Where: "magnitude < 6"}, "nothing selected: the store holds 6 records; 2 records do not meet the expression; 1 record left out: magnitude unknown; 1 record left out: one horizontal component only; 1 record left out: siting borehole; 1 record left out: siting structure"},
-		{Selection{Where: "azimuth_deg > 400"}, "nothing selected: the store holds 6 records; 1 record does not meet the expression; 3 records left out: azimuth_deg unknown; 1 record left out: siting borehole; 1 record left out: siting structure"},
+		{Selection{Where: "azimuth_deg > 400"}, "nothing selected: the store holds 6 records; 1 record does not meet the expression; 3 records left out: azimuth_deg unknown; 1 record left out: siting borehole; 1 record left out: siting structure; azimuth_deg of a pair is unknown: ask for h1, h2, v or each instead"},
 		{Selection{Siting: "unknown"}, "nothing selected: the store holds 6 records; 1 record left out: siting borehole; 3 records left out: siting free-field; 1 record left out: siting ground; 1 record left out: siting structure"},
 	}
 	for _, c := range cases {

@@ -22,11 +22,11 @@ func demoCommand() *cli.Command {
 			"shows a spectrum and the demands of invented structures. The store is DIR/demo.db unless --store names another.",
 		Flags: []cli.Flag{
 			&cli.StringFlag{Name: "dir", Value: "swaybook-demo", Usage: "folder for the files, `DIR`"},
-			&cli.IntFlag{Name: "events", Usage: "earthquakes (default: the region's twelve)"},
-			&cli.IntFlag{Name: "stations", Usage: "stations (default: the region's twenty)"},
+			&cli.IntFlag{Name: "events", DefaultText: "the region's twelve", Usage: "earthquakes"},
+			&cli.IntFlag{Name: "stations", DefaultText: "the region's twenty", Usage: "stations"},
 			&cli.IntFlag{Name: "seed", Value: 1, Usage: "seed of the random numbers"},
 			rotationFlag(),
-			&cli.BoolFlag{Name: "files-only", Usage: "write the files and stop"},
+			&cli.BoolFlag{Name: "files-only", DisableDefaultText: true, Usage: "write the files and stop"},
 		},
 		Action: func(c *cli.Context) error {
 			o, err := newDemoOptions(c)

@@ -29,7 +29,7 @@ func globalFlags() []cli.Flag {
 	return []cli.Flag{
 		&cli.StringFlag{Name: "store", Usage: "the store, one SQLite `FILE` (default: the variable " + storeVariable + ", else " + defaultStore + ")"},
 		&cli.StringFlag{Name: "log", Value: "text", Usage: "form of the messages on stderr: text or json"},
-		&cli.BoolFlag{Name: "quiet", Usage: "no progress and no messages but errors"},
+		&cli.BoolFlag{Name: "quiet", DisableDefaultText: true, Usage: "no progress and no messages but errors"},
 	}
 }
 

@@ -30,12 +30,12 @@ func ingestCommand() *cli.Command {
 		Flags: []cli.Flag{
 			&cli.StringFlag{Name: "catalogue", Usage: "CSV `FILE` that joins or overrides metadata"},
 			&cli.StringFlag{Name: "unit", Usage: "`UNIT` of samples in files that state none: g, mg, gal, m/s2, cm/s2, mm/s2, in/s2, ft/s2"},
-			&cli.Float64Flag{Name: "dt", Usage: "time step in `S` of files that state none"},
+			&cli.Float64Flag{Name: "dt", DefaultText: "none", Usage: "time step in `S` of files that state none"},
 			&cli.StringFlag{Name: "periods", Usage: "periods of a new store's grid in s: a `LIST` such as 0.1,0.2,1 or @FILE"},
 			&cli.StringFlag{Name: "dampings", Usage: "damping ratios of a new store's grid, a `LIST` such as 2%,5%,0.1"},
-			&cli.IntFlag{Name: "workers", Usage: "files in work at the same time (default: one a processor)"},
+			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files in work at the same time"},
 			rotationFlag(),
-			&cli.BoolFlag{Name: "json", Usage: "print the summary as JSON"},
+			&cli.BoolFlag{Name: "json", DisableDefaultText: true, Usage: "print the summary as JSON"},
 		},
 		Action: func(c *cli.Context) error {
 			o, err := newIngestOptions(c)

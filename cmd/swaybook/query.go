@@ -183,7 +183,7 @@ func queryRecordsCommand() *cli.Command {
 		Name:  "records",
 		Usage: "what is held, or what was rejected and why",
 		Flags: append(selectionFlags("recorded, all (pairs stored over all directions too), each, h1, h2, v, rotd50 or rotd100 (default: recorded)", "as for query spectrum (default: all)"),
-			&cli.BoolFlag{Name: "rejected", Usage: "list what could not be stored, and why"},
+			&cli.BoolFlag{Name: "rejected", DisableDefaultText: true, Usage: "list what could not be stored, and why"},
 			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
