@@ -54,17 +54,16 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 }
 
 func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, generation int64, computed Spectra) error {
-	computed.Encode()
-	for i, text := range computed.text {
+	for i, text := range computed.sd {
 		err := t.exec(ctx, `INSERT INTO spectrum (generation_id, damping_position, role, record_id, sd_m) VALUES (?, ?, ?, ?, ?)`,
 			generation, i, role, recordID, text)
 		if err != nil {
 			return fmt.Errorf("store spectrum: %w", err)
 		}
 	}
-	for _, name := range slices.Sorted(maps.Keys(computed.Measures)) {
+	for _, name := range slices.Sorted(maps.Keys(computed.measures)) {
 		err := t.exec(ctx, `INSERT INTO measure (generation_id, record_id, role, name, value) VALUES (?, ?, ?, ?, ?)`,
-			generation, recordID, role, name, computed.Measures[name])
+			generation, recordID, role, name, computed.measures[name])
 		if err != nil {
 			return fmt.Errorf("store measure %s: %w", name, err)
 		}

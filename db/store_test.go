@@ -58,17 +58,18 @@ func add(ctx context.Context, tx *Tx, g Generation, code, role string, base floa
 	}
 	samples := motion(100, 4, 1)
 	data, digest := EncodeSamples(samples, 1)
-	computed := Spectra{Measures: map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}}
+	var computed [][]float64
 	for d := range g.Grid.Dampings {
 		var sd []float64
 		for p := range g.Grid.PeriodsS {
 			sd = append(sd, base+float64(10*d+p))
 		}
-		computed.SD = append(computed.SD, sd)
+		computed = append(computed, sd)
 	}
 	c := Component{Role: role, Axis: "horizontal", Label: role, StepS: 0.01, Samples: len(samples), Unit: "m/s2", Processing: "corrected",
 		AzimuthDeg: number(30), Start: startsAt, SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
-	return tx.AddComponent(ctx, recordID, c, data, digest, g.ID, computed)
+	return tx.AddComponent(ctx, recordID, c, data, digest, g.ID,
+		NewSpectra(computed, map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}))
 }
 
 func filledStore(t *testing.T) (*Store, Generation) {

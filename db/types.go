@@ -125,19 +125,19 @@ type Generation struct {
 	Grid   Grid
 }
 
-// Spectra is what is computed of one component: SD in m for every damping of
-// the grid (outer) at every period (inner), and the measures by name.
+// Spectra is what is computed of one component, in the form in which it is stored.
 type Spectra struct {
-	SD       [][]float64
-	Measures map[string]float64
-	text     [][]byte // SD as it is stored, in its place
+	sd       [][]byte // text by damping
+	measures map[string]float64
 }
 
-// Encode turns the SD into the form in which it is stored, which is then not left
-// to the transaction that stores it. SD is nil afterwards.
-func (s *Spectra) Encode() {
-	for _, sd := range s.SD {
-		s.text = append(s.text, encodeOrdinates(make([]byte, 0, OrdinateWidth*len(sd)), sd))
+// NewSpectra takes SD in m for every damping of the grid (outer) at every period
+// (inner), and the measures by name. To write the numbers takes longer than to
+// store them, and is not left to the transaction that does that.
+func NewSpectra(sd [][]float64, measures map[string]float64) Spectra {
+	s := Spectra{measures: measures}
+	for _, values := range sd {
+		s.sd = append(s.sd, encodeOrdinates(make([]byte, 0, OrdinateWidth*len(values)), values))
 	}
-	s.SD = nil
+	return s
 }

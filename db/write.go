@@ -213,16 +213,13 @@ func upsert(table string, key, optional []string, override bool) string {
 	return fmt.Sprintf("INSERT INTO %s (%s) VALUES (%s) ON CONFLICT (%s) DO UPDATE SET %s RETURNING id", table, columns, marks, conflict, sets)
 }
 
-// PutRotated stores what was computed of a record's horizontals over all
-// directions, under RoleRotD50 or RoleRotD100, in place of what is stored.
-func (t *Tx) PutRotated(ctx context.Context, recordID, generationID int64, role string, s Spectra) error {
-	for _, table := range []string{"spectrum", "measure"} {
-		err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ? AND role = ? AND +generation_id = ?`, recordID, role, generationID)
-		if err != nil {
-			return fmt.Errorf("replace rotated %s: %w", table, err)
-		}
+// AddRotated stores what was computed of a record's horizontals over all
+// directions. Nothing of that may be stored: see IsUnrotated.
+func (t *Tx) AddRotated(ctx context.Context, recordID, generationID int64, rotd50, rotd100 Spectra) error {
+	if err := t.addSpectra(ctx, recordID, RoleRotD50, generationID, rotd50); err != nil {
+		return err
 	}
-	return t.addSpectra(ctx, recordID, role, generationID, s)
+	return t.addSpectra(ctx, recordID, RoleRotD100, generationID, rotd100)
 }
 
 // forgetRotated removes what was computed of both horizontals of a record, in

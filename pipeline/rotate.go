@@ -187,8 +187,5 @@ func (r *rotator) put(ctx context.Context, tx *db.Tx, rot rotation) error {
 	if rot.reason != "" {
 		return nil
 	}
-	if err := tx.PutRotated(ctx, rot.pair.RecordID, r.run.generation.ID, db.RoleRotD50, rot.median); err != nil {
-		return err
-	}
-	return tx.PutRotated(ctx, rot.pair.RecordID, r.run.generation.ID, db.RoleRotD100, rot.maximum)
+	return tx.AddRotated(ctx, rot.pair.RecordID, r.run.generation.ID, rot.median, rot.maximum)
 }

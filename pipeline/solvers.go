@@ -17,13 +17,11 @@ func newSolvers(grid db.Grid) solvers {
 	return solvers{spectrum.NewSolvers(spectrum.NigamJennings, oscillators), len(grid.PeriodsS)}
 }
 
-// spectra is what a solver's SD and the peaks are in the store, encoded by the
-// worker.
+// spectra is what a solver's SD and the peaks are in the store.
 func (s solvers) spectra(sd []float64, peaks spectrum.GroundPeaks) db.Spectra {
-	out := db.Spectra{Measures: map[string]float64{db.MeasurePGA: peaks.PGA, db.MeasurePGV: peaks.PGV, db.MeasurePGD: peaks.PGD}}
+	var byDamping [][]float64
 	for ; len(sd) > 0; sd = sd[s.periods:] {
-		out.SD = append(out.SD, sd[:s.periods])
+		byDamping = append(byDamping, sd[:s.periods])
 	}
-	out.Encode()
-	return out
+	return db.NewSpectra(byDamping, map[string]float64{db.MeasurePGA: peaks.PGA, db.MeasurePGV: peaks.PGV, db.MeasurePGD: peaks.PGD})
 }

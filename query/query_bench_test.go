@@ -36,10 +36,8 @@ func benchStore(b *testing.B, components, samples int) *db.Store {
 					return err
 				}
 			}
-			for _, role := range []string{db.RoleRotD50, db.RoleRotD100} {
-				if err := tx.PutRotated(ctx, record, g.ID, role, randomSpectra(rng, g.Grid)); err != nil {
-					return err
-				}
+			if err := tx.AddRotated(ctx, record, g.ID, randomSpectra(rng, g.Grid), randomSpectra(rng, g.Grid)); err != nil {
+				return err
 			}
 		}
 		return nil
@@ -66,15 +64,15 @@ func putRandom(ctx context.Context, tx *db.Tx, rng *rand.Rand, record int64, rol
 }
 
 func randomSpectra(rng *rand.Rand, grid db.Grid) db.Spectra {
-	computed := db.Spectra{Measures: map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 0.1, db.MeasurePGD: 0.01}}
+	var computed [][]float64
 	for range grid.Dampings {
 		sd := make([]float64, len(grid.PeriodsS))
 		for p, t := range grid.PeriodsS {
 			sd[p] = t * t * math.Exp(rng.NormFloat64()) / 40
 		}
-		computed.SD = append(computed.SD, sd)
+		computed = append(computed, sd)
 	}
-	return computed
+	return db.NewSpectra(computed, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 0.1, db.MeasurePGD: 0.01})
 }
 
 // BenchmarkSpectrum asks for 251 periods of 3000 stored components.

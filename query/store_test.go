@@ -145,12 +145,8 @@ func (r inventedRecord) put(ctx context.Context, tx *db.Tx, run int64, g db.Gene
 	if r.unrotated || !isFirst || !isSecond {
 		return nil
 	}
-	for role, level := range map[string]float64{db.RoleRotD50: math.Sqrt(a * b), db.RoleRotD100: 1.25 * max(a, b)} {
-		if err := tx.PutRotated(ctx, id, g.ID, role, inventedComponent{level: level}.spectra(g.Grid)); err != nil {
-			return err
-		}
-	}
-	return nil
+	median, maximum := inventedComponent{level: math.Sqrt(a * b)}, inventedComponent{level: 1.25 * max(a, b)}
+	return tx.AddRotated(ctx, id, g.ID, median.spectra(g.Grid), maximum.spectra(g.Grid))
 }
 
 func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64, code string, g db.Generation) error {
@@ -208,17 +204,17 @@ func (c inventedComponent) samples() []float64 {
 
 // spectra also sets PGA to level·g, PGV to level m/s and PGD to level m.
 func (c inventedComponent) spectra(grid db.Grid) db.Spectra {
-	out := db.Spectra{Measures: map[string]float64{
-		db.MeasurePGA: c.level * StandardGravity, db.MeasurePGV: c.level, db.MeasurePGD: c.level,
-	}}
+	var out [][]float64
 	for d := range grid.Dampings {
 		sd := make([]float64, len(grid.PeriodsS))
 		for p := range sd {
 			sd[p] = c.level * float64(p+1) / float64(d+1)
 		}
-		out.SD = append(out.SD, sd)
+		out = append(out, sd)
 	}
-	return out
+	return db.NewSpectra(out, map[string]float64{
+		db.MeasurePGA: c.level * StandardGravity, db.MeasurePGV: c.level, db.MeasurePGD: c.level,
+	})
 }
 
 // near allows rounding of a few operations.
