@@ -5,6 +5,7 @@ import (
 	"database/sql"
 	"encoding/json"
 	"fmt"
+	"math"
 )
 
 // HeldComponent is a stored component with what is known of its record.
@@ -16,8 +17,13 @@ type HeldComponent struct {
 	Peaks // of the ground motion
 }
 
-// Peaks are PGA in m/s², PGV in m/s and PGD in m.
+// Peaks are PGA in m/s², PGV in m/s and PGD in m, NaN where the store has lost one.
 type Peaks struct{ PGA, PGV, PGD float64 }
+
+// AreDamaged reports whether the store has lost one.
+func (p Peaks) AreDamaged() bool { return math.IsNaN(p.PGA + p.PGV + p.PGD) }
+
+var lostPeaks = Peaks{math.NaN(), math.NaN(), math.NaN()}
 
 // Details says what is read of components beside what every selection needs:
 // RecordID, Role, and of the record Code, Siting and Event. A question over
@@ -81,6 +87,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 		if v.Start, err = parseTime(v.start); err != nil {
 			return nil, err
 		}
+		v.Peaks = Peaks{orNaN(v.pga), orNaN(v.pgv), orNaN(v.pgd)}
 		if v.warnings != "" {
 			if err := json.Unmarshal([]byte(v.warnings), &v.Warnings); err != nil {
 				return nil, fmt.Errorf("read components: %w", err)
@@ -95,6 +102,14 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 type componentRow struct {
 	HeldComponent
 	start, warnings string
+	pga, pgv, pgd   *float64
+}
+
+func orNaN(x *float64) float64 {
+	if x == nil {
+		return math.NaN()
+	}
+	return *x
 }
 
 // columns are what is read of a component, and where it goes. Without details
@@ -107,7 +122,7 @@ func (v *componentRow) columns(d Details) (names string, into []any) {
 	}
 	if d&DetailPeaks != 0 {
 		names += `, pga.value, pgv.value, pgd.value`
-		into = append(into, &v.PGA, &v.PGV, &v.PGD)
+		into = append(into, &v.pga, &v.pgv, &v.pgd)
 	}
 	if d&DetailChannel != 0 {
 		names += `, c.id, c.axis, c.label, c.rank, c.channel, c.samples, c.unit, c.processing, c.low_cut_hz, c.high_cut_hz,

@@ -134,7 +134,10 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 	}
 	out := map[int64]Peaks{}
 	for _, v := range found {
-		p := out[v.id]
+		p, ok := out[v.id]
+		if !ok {
+			p = lostPeaks
+		}
 		switch v.name {
 		case MeasurePGA:
 			p.PGA = v.value

@@ -125,6 +125,28 @@ func TestDamagedSpectraAreLeftOut(t *testing.T) {
 	}
 }
 
+// TestLostPeaksAreLeftOut: so are components and pairs that lack a measure, where
+// it is needed.
+func TestLostPeaksAreLeftOut(t *testing.T) {
+	for _, role := range []string{db.RoleH2, db.RoleRotD50} {
+		store := newStore(t, handGrid, handRecords())
+		alter(t, store, `DELETE FROM measure WHERE name = 'pgv_m_s' AND role = ? AND record_id = (SELECT id FROM record WHERE code = 'R2')`, role)
+		list, err := RecordsQuestion{Selection{Component: Component(role)}}.Ask(t.Context(), store)
+		if err != nil || !slices.Contains(list.Selection.LeftOut, LeftOut{"damaged in the store", 1}) {
+			t.Errorf("%s: list %+v, %v", role, list.Selection, err)
+		}
+		if err := list.Write(&bytes.Buffer{}, FormatJSON); err != nil {
+			t.Errorf("%s: %v", role, err)
+		}
+		for where, want := range map[string]bool{"pga_g > 0": true, "magnitude > 0": false} {
+			r := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Component: Component(role), Where: where}, Damping: 0.02}).Selection
+			if got := slices.Contains(r.LeftOut, LeftOut{"damaged in the store", 1}); got != want {
+				t.Errorf("%s where %s: left out %v", role, where, r.LeftOut)
+			}
+		}
+	}
+}
+
 // TestPossibleText: what an expression says where nothing is known of peaks.
 func TestPossibleText(t *testing.T) {
 	for text, want := range map[string]string{

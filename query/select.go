@@ -51,7 +51,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
-	p := &picker{selection: s, condition: condition, sitings: sitings}
+	p := &picker{selection: s, condition: condition, sitings: sitings, details: details}
 	p.hint, p.leftOut = p.hintOf(), map[string]int{}
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
@@ -93,6 +93,7 @@ type picker struct {
 	selection Selection
 	condition *where
 	sitings   map[string]bool
+	details   db.Details // read
 	// rotated has peaks of rotated pairs by role and the record's id; damaged are
 	// the records of those whose peaks could not be computed.
 	rotated map[string]map[int64]db.Peaks
@@ -143,10 +144,19 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
+	case p.details&db.DetailPeaks != 0 && m.hasDamagedPeaks():
+		return reasonDamaged, false, nil
 	case unknown != "":
 		return unknown + " unknown", false, nil
 	}
 	return "", true, nil
+}
+
+func (m *motion) hasDamagedPeaks() bool {
+	if m.isRotated() {
+		return m.rotated != nil && m.rotated.AreDamaged()
+	}
+	return slices.ContainsFunc(m.members, func(c *db.HeldComponent) bool { return c.AreDamaged() })
 }
 
 // ask asks the expression of a motion. Where that lacks a number which the
