@@ -124,10 +124,7 @@ func rotatePair(solvers solvers, stepS, betweenDeg float64, first, second db.Sto
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}
-	pair, err := spectrum.NewPair(a, b, betweenDeg)
-	if err != nil {
-		return median, maximum, err
-	}
+	pair := spectrum.NewPair(a, b, betweenDeg)
 	if pair.ChangedA {
 		sdA = solver.SD(nil, pair.A)
 	}

@@ -59,7 +59,7 @@ func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.H
 	if err != nil {
 		return p, err
 	}
-	return spectrum.NewPair(a, b, deg)
+	return spectrum.NewPair(a, b, deg), nil
 }
 
 // findRotated notes peaks of rotated pairs. For ComponentAll these are all that

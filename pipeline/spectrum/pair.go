@@ -10,6 +10,10 @@ import (
 // be for rounding: azimuths are decimals of a few digits.
 const rightAngleDeg = 1e-9
 
+// minSine is the least sine of the angle between two components that are taken
+// for a pair: below it errors of the components are more than doubled.
+const minSine = 0.5
+
 // Horizontal is what decides, beside the samples, whether a horizontal component
 // can be rotated with another one.
 type Horizontal struct {
@@ -50,7 +54,7 @@ func Between(first, second Horizontal) (deg float64, assumed bool, err error) {
 		return 90, true, nil
 	}
 	deg = second.AzimuthDeg - first.AzimuthDeg
-	if _, err := RightAngle(nil, nil, deg); err != nil {
+	if sin, _ := sinCosBetween(deg); !(math.Abs(sin) >= minSine) {
 		return 0, false, &PairError{ReasonDirections, fmt.Sprintf("azimuths %g° and %g°", first.AzimuthDeg, second.AzimuthDeg)}
 	}
 	return deg, false, nil
@@ -69,26 +73,43 @@ type Pair struct {
 	common int // samples of the shorter component
 }
 
-// NewPair makes two components a pair. The shorter is followed by zeros, since the
-// ground is still after the last sample; and second, measured betweenDeg degrees
-// from first, is taken at a right angle to it as RightAngle does.
+// NewPair makes a pair of two components, betweenDeg degrees from first to second;
+// it panics where Between finds directions too near. The shorter is followed by zeros, since the ground is still
+// after the last sample. second is taken at a right angle to first, with α the angle,
+//
+//	second⊥ = (second − first·cos α)/sin α,
+//
+// and as it is where the two are at a right angle already: the sign does not matter
+// to what is taken over all directions.
 //
 // first and second keep their values, and the pair shares their samples where
-// these need no change. The error wraps ErrDirections.
-func NewPair(first, second []float64, betweenDeg float64) (p Pair, err error) {
+// these need no change.
+func NewPair(first, second []float64, betweenDeg float64) Pair {
 	n := max(len(first), len(second))
-	p.ChangedA, p.ChangedB = len(first) < n, len(second) < n
-	p.A, p.B = followedByZeros(first, n), followedByZeros(second, n)
-	p.common = min(len(first), len(second))
-	if math.Abs(math.Remainder(betweenDeg-90, 180)) < rightAngleDeg {
-		return p, nil
+	p := Pair{
+		A: followedByZeros(first, n), B: followedByZeros(second, n),
+		ChangedA: len(first) < n, ChangedB: len(second) < n,
+		common: min(len(first), len(second)),
 	}
-	if p.B, err = RightAngle(p.A, p.B, betweenDeg); err != nil {
-		return Pair{}, err
+	if !(math.Abs(math.Remainder(betweenDeg-90, 180)) < rightAngleDeg) {
+		p.B, p.ChangedB = turnedUpright(p.A, p.B, betweenDeg), true
 	}
-	p.ChangedB = true
-	return p, nil
+	return p
 }
+
+func turnedUpright(first, second []float64, betweenDeg float64) []float64 {
+	sin, cos := sinCosBetween(betweenDeg)
+	if !(math.Abs(sin) >= minSine) {
+		panic("spectrum: directions of a pair are too near")
+	}
+	out := make([]float64, len(second))
+	for i, a := range second {
+		out[i] = (a - float64(first[i]*cos)) / sin
+	}
+	return out
+}
+
+func sinCosBetween(deg float64) (sin, cos float64) { return math.Sincos(deg * math.Pi / 180) }
 
 // Peaks is RotDPeaks of the pair, but that PGV and PGD are taken where both
 // components were recorded. A velocity that a component has at its end is one of

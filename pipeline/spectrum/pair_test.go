@@ -17,7 +17,7 @@ func TestPairPadsAndTurns(t *testing.T) {
 		name          string
 		first, second []float64
 		between       float64
-		a, b          []float64 // b nil where RightAngle gives it
+		a, b          []float64 // b nil where it is turned
 		changedA      bool
 		changedB      bool
 	}{
@@ -34,16 +34,11 @@ func TestPairPadsAndTurns(t *testing.T) {
 	for _, test := range tests {
 		t.Run(test.name, func(t *testing.T) {
 			keep := [2][]float64{slices.Clone(test.first), slices.Clone(test.second)}
-			p, err := NewPair(test.first, test.second, test.between)
-			if err != nil {
-				t.Fatal(err)
-			}
+			p := NewPair(test.first, test.second, test.between)
 			want := test.b
 			if want == nil && len(test.a) > 0 {
 				second := append(slices.Clone(test.second), make([]float64, len(test.a)-len(test.second))...)
-				if want, err = RightAngle(test.a, second, test.between); err != nil {
-					t.Fatal(err)
-				}
+				want = turnedUpright(test.a, second, test.between)
 			}
 			if p.ChangedA != test.changedA || p.ChangedB != test.changedB || !slices.Equal(p.A, test.a) || !slices.Equal(p.B, want) {
 				t.Errorf("changed %v and %v, want %v and %v; a as wanted %v, b as wanted %v", p.ChangedA, p.ChangedB, test.changedA, test.changedB, slices.Equal(p.A, test.a), slices.Equal(p.B, want))
@@ -55,12 +50,17 @@ func TestPairPadsAndTurns(t *testing.T) {
 	}
 }
 
+// TestPairRefusesNearDirections: what Between refuses must not be turned.
 func TestPairRefusesNearDirections(t *testing.T) {
 	for _, between := range []float64{0, 20, -29.9, 180, 340, math.NaN()} {
-		p, err := NewPair(shaken(1, 9), shaken(2, 9), between)
-		if !errors.Is(err, ErrDirections) || p.A != nil || p.B != nil {
-			t.Errorf("%g°: %v, %v, want ErrDirections", between, p, err)
-		}
+		func() {
+			defer func() {
+				if recover() == nil {
+					t.Errorf("%g° is taken", between)
+				}
+			}()
+			NewPair(shaken(1, 9), shaken(2, 9), between)
+		}()
 	}
 }
 
@@ -127,10 +127,7 @@ func TestPairPeaksDoNotCoast(t *testing.T) {
 		push[i] = 1
 	}
 	for _, order := range [][2][]float64{{long, push}, {push, long}} {
-		p, err := NewPair(order[0], order[1], 90)
-		if err != nil {
-			t.Fatal(err)
-		}
+		p := NewPair(order[0], order[1], 90)
 		median, maximum := p.Peaks(stepS)
 		want := GroundPeaks{PGA: 3, PGV: 1, PGD: 0.5}
 		if math.Abs(maximum.PGA-want.PGA) > 1e-12 || math.Abs(maximum.PGV-want.PGV) > 1e-12 || math.Abs(maximum.PGD-want.PGD) > 1e-12 {
@@ -148,18 +145,12 @@ func TestPairPeaksDoNotCoast(t *testing.T) {
 func TestPairPeaksOfEqualLengths(t *testing.T) {
 	x, y := shaken(1, 60), shaken(2, 60)
 	for _, between := range []float64{90, 60} {
-		p, err := NewPair(x, y, between)
-		if err != nil {
-			t.Fatal(err)
-		}
+		p := NewPair(x, y, between)
 		median, maximum := p.Peaks(0.01)
 		if m50, m100 := RotDPeaks(0.01, p.A, p.B); median != m50 || maximum != m100 {
 			t.Errorf("%g°: %+v and %+v, want %+v and %+v", between, median, maximum, m50, m100)
 		}
-		cut, err := NewPair(x, y[:40], between)
-		if err != nil {
-			t.Fatal(err)
-		}
+		cut := NewPair(x, y[:40], between)
 		median, maximum = cut.Peaks(0.01)
 		whole50, whole100 := RotDPeaks(0.01, cut.A, cut.B)
 		common50, common100 := RotDPeaks(0.01, p.A[:40], p.B[:40])

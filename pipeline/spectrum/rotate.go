@@ -1,8 +1,6 @@
 package spectrum
 
 import (
-	"errors"
-	"fmt"
 	"math"
 	"slices"
 
@@ -11,40 +9,6 @@ import (
 
 // Directions is the number of directions of RotD50 and RotD100, 1° apart.
 const Directions = kernel.Directions
-
-// ErrDirections is wrapped by the error of RightAngle for components whose
-// directions are too near to each other.
-var ErrDirections = errors.New("directions too near to each other")
-
-// minSine is the least sine of the angle between two components that RightAngle
-// accepts: below it errors of the components are more than doubled.
-const minSine = 0.5
-
-// RightAngle returns the component at a right angle to first, from second, which
-// is measured betweenDeg degrees from first,
-//
-//	second⊥ = (second − first·cos α)/sin α,
-//
-// and second itself where the two are at a right angle already. The slices have
-// equal length, or RightAngle panics; they keep their values. The error wraps
-// ErrDirections.
-func RightAngle(first, second []float64, betweenDeg float64) ([]float64, error) {
-	if len(first) != len(second) {
-		panic("spectrum: components of a pair differ in length")
-	}
-	if math.Remainder(betweenDeg-90, 180) == 0 {
-		return second, nil
-	}
-	sin, cos := math.Sincos(betweenDeg * math.Pi / 180)
-	if !(math.Abs(sin) >= minSine) {
-		return nil, fmt.Errorf("%w: %g° apart", ErrDirections, betweenDeg)
-	}
-	out := make([]float64, len(second))
-	for i, a := range second {
-		out[i] = (a - float64(first[i]*cos)) / sin
-	}
-	return out, nil
-}
 
 // RotD returns for each oscillator the median (RotD50) and the maximum
 // (RotD100), over directions θ = 0°, 1°, … 179° from the first component, of the
