@@ -39,8 +39,8 @@ func newDirections() directions {
 }
 
 // finish returns RotD50 and RotD100 of a lane, in units of the motion.
-func (r *rotation) finish(l int, ringing *ringing, end pairEnd) (rotd50, rotd100 float64) {
-	lane, s := &r.lane[l], &r.directions
+func (r *rotation) finish(lane *rotatedLane, end pairEnd) (rotd50, rotd100 float64) {
+	s := &r.directions
 	if lane.wide < len(lane.pieces) {
 		r.points = lane.points(r.points[:0])
 		lane.widen(r.points)
@@ -53,7 +53,7 @@ func (r *rotation) finish(l int, ringing *ringing, end pairEnd) (rotd50, rotd100
 	s.sorted = s.sorted[:0]
 	for _, c := range s.candidates {
 		u, v := end.toward(c.direction)
-		s.sorted = append(s.sorted, ringing.peak(c.d, u, v))
+		s.sorted = append(s.sorted, lane.ringing.peak(c.d, u, v))
 	}
 	slices.Sort(s.sorted)
 	n := len(s.sorted) + above // the middle two follow half − 1 that are greater
@@ -73,8 +73,7 @@ func (s *directions) choose(lane *rotatedLane, end pairEnd) (above int) {
 	for i := range lane.pieces {
 		ground = max(ground, lane.pieces[i].ground)
 	}
-	lane.raise(8)
-	top := kernel.Greatest(&lane.reach)
+	top := lane.raise(12)
 	most := lane.most(top)
 	if rings {
 		most = max(most, end.length())
@@ -152,7 +151,7 @@ func (e *pairEnd) reach(i int) float64 { return reach(e.toward(i)) }
 // toward returns displacement and velocity in a direction.
 func (e *pairEnd) toward(i int) (u, v float64) {
 	cos, sin := compass.Cos[i], compass.Sin[i]
-	return math.FMA(cos, e.x, float64(sin*e.y)), math.FMA(cos, e.vx, float64(sin*e.vy))
+	return toward(e.x, e.y, cos, sin), toward(e.vx, e.vy, cos, sin)
 }
 
 // trail makes points of the pieces of a lane, one after the other.
@@ -203,12 +202,11 @@ func (r *rotation) search(lane *rotatedLane, candidates []candidate) {
 func (s *directions) aim(lane *rotatedLane, candidates []candidate) {
 	n := float64(lane.every)
 	phase := float64(n * lane.one.phase)
-	linear, square := float64(float64(2*lane.one.damping)*phase), float64(phase*phase)
-	share := 1 / ((1 - float64(linear*0.5)) - float64(square*0.125))
+	force, curve, slope := curvature(float64(2*lane.one.damping*phase), float64(phase*phase))
 	for l, c := range candidates {
 		s.rays.Cos[l], s.rays.Sin[l] = compass.Cos[c.direction], compass.Sin[c.direction]
-		s.screen.Force[l] = float64(share * float64(n*n))
-		s.screen.Curve[l], s.screen.Slope[l] = float64(share*square), float64(share*linear)
+		s.screen.Force[l] = float64(force * float64(n*n))
+		s.screen.Curve[l], s.screen.Slope[l] = curve, slope
 	}
 }
 
@@ -220,7 +218,7 @@ func (r *rotation) follow(best float64, lane *rotatedLane, s *piece, u, end, cos
 	}
 	o := lane.one
 	x, y := r.pair[0].a[s.sample:], r.pair[1].a[s.sample:]
-	a, b := math.FMA(cos, x[0], float64(sin*y[0])), math.FMA(cos, x[1], float64(sin*y[1]))
+	a, b := toward(x[0], y[0], cos, sin), toward(x[1], y[1], cos, sin)
 	if lane.cuts > 1 {
 		p := newParts(groundedStep{u: u, a: a, next: b}, lane.cuts)
 		a = p.a + float64(p.rise*float64(s.part))
@@ -229,16 +227,15 @@ func (r *rotation) follow(best float64, lane *rotatedLane, s *piece, u, end, cos
 	if s.every == 1 {
 		return o.step(best, u, end, a, b)
 	}
-	v := o.velocity(u, math.FMA(cos, s.xNext, float64(sin*s.yNext))-u, a, b)
+	v := o.velocity(u, toward(s.xNext, s.yNext, cos, sin)-u, a, b)
 	for k := 1; ; k++ {
-		p := parts{u: u, v: v, a: a, rise: b - a}
-		p.next(o)
-		if o.bound(max(math.Abs(u), math.Abs(p.u)), math.Abs(a), math.Abs(b)) > best {
-			best = o.within(best, u, v, p.u, p.v, a, b)
+		next, vNext := u+o.change(u, v, a, b), o.arrival(u, v, a, b)
+		if o.bound(max(math.Abs(u), math.Abs(next)), math.Abs(a), math.Abs(b)) > best {
+			best = o.within(best, u, v, next, vNext, a, b)
 		}
 		if k == s.every {
 			return best
 		}
-		u, v, a, b = p.u, p.v, b, math.FMA(cos, x[k+1], float64(sin*y[k+1]))
+		u, v, a, b = next, vNext, b, toward(x[k+1], y[k+1], cos, sin)
 	}
 }

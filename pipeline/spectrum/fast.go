@@ -149,11 +149,10 @@ func (o *fast) follow(best, u, v, a, slope float64) float64 {
 	square := 1 / float64(n*n)
 	v /= n
 	rise := float64(slope / n * square)
-	r := &o.piece.exact
 	for j := range o.cuts {
 		at := float64((a + float64(slope*(float64(j)/n))) * square)
 		next := at + rise
-		end := u + ((float64(r.uu*u) + float64(r.uv*v)) + (float64(r.pu*at) + float64(r.qu*next)))
+		end := u + o.piece.change(u, v, at, next)
 		vEnd := o.piece.arrival(u, v, at, next)
 		best = o.piece.within(best, u, v, end, vEnd, at, next)
 		u, v = end, vEnd

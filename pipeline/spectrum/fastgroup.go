@@ -38,16 +38,19 @@ func (g *fastGroup) live() uint32 { return ^uint32(0) >> (lanes - len(g.members)
 func (g *fastGroup) solve(dst []float64, m *motion) {
 	g.march(m)
 	g.refine(m)
-	n := m.steps()
-	slope := m.a[n] - m.a[n-1]
-	end := &m.marks[m.blocks()]
 	for l := range g.members {
 		o := &g.members[l]
-		// The state is relative to the line of the last step, carried on.
-		s := state{end.X[l], end.Y[l]}
-		u := o.displacement(s, m.a[n], slope)
-		dst[o.index] = o.ringing.peak(m.best[l], u, o.velocity(s, slope)/o.phase)
+		last := g.last(m, l)
+		dst[o.index] = o.ringing.peak(m.best[l], last.x, last.y/o.phase)
 	}
+}
+
+// last returns displacement and velocity at the last sample. The state is
+// relative to the line of the last step, carried on.
+func (g *fastGroup) last(m *motion, l int) state {
+	o, n, s := &g.members[l], m.steps(), m.final(l)
+	slope := m.a[n] - m.a[n-1]
+	return state{o.displacement(s, m.a[n], slope), o.velocity(s, slope)}
 }
 
 // march sets the marks of all blocks.
@@ -68,20 +71,17 @@ func (g *fastGroup) march(m *motion) {
 // of the greatest free vibration, which usually settle the others.
 func (g *fastGroup) refine(m *motion) {
 	live := g.live()
-	marks := m.marks[:m.blocks()]
-	kernel.GreatestPeaks(m.top, marks)
+	m.flagTops(m.flags)
 	*m.screen = kernel.Screen{}
-	for l := range m.top {
-		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
+	for l := range m.best {
 		m.best[l] = 0
 	}
-	kernel.ScreenPeaks(m.screen, marks, m.blockLines, m.flags)
 	for b := range m.flags {
 		m.done[b] = m.flags[b] & live
 		g.enter(m, b, m.done[b], true)
 	}
 	g.limit(m)
-	kernel.ScreenSquares(m.screen, marks, m.blockLines, m.flags)
+	kernel.ScreenSquares(m.screen, m.marks[:m.blocks()], m.blockLines, m.flags)
 	for b, flags := range m.flags {
 		g.enter(m, b, flags&live&^m.done[b], false)
 	}

@@ -139,6 +139,23 @@ func measureSteps(lines []kernel.Line, bend, a []float64) (top kernel.Line) {
 	return kernel.Line{First: math.Float64frombits(greatest), Second: math.Float64frombits(steepest)}
 }
 
+// flagTops sets top to the greatest peak of each lane, and flags the blocks that
+// have it.
+func (m *motion) flagTops(flags []uint32) {
+	marks := m.marks[:m.blocks()]
+	kernel.GreatestPeaks(m.top, marks)
+	for l := range m.top {
+		m.tops.Limit[l] = math.Nextafter(m.top[l], -1)
+	}
+	kernel.ScreenPeaks(m.tops, marks, m.blockLines, flags)
+}
+
+// final is the state of a lane at the end of its march.
+func (m *motion) final(l int) state {
+	end := &m.marks[m.blocks()]
+	return state{end.X[l], end.Y[l]}
+}
+
 // steps is the number of intervals between samples.
 func (m *motion) steps() int { return len(m.a) - 1 }
 

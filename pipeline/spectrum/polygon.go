@@ -17,10 +17,9 @@ const half = Directions / 2
 //
 // Let floor be a number that D exceeds in more than half of the directions, 91 of
 // 180, because L does or because begin knows it. Then the lower of the middle two
-// values of D exceeds it, and |u| up to it
-// changes neither that value nor any above it. So a point matters only if in
-// some direction it is farther out than max(L(θ), floor). The fence surrounds a
-// region without such points.
+// values of D exceeds it, and |u| up to it changes neither that value nor any
+// above it. So a point matters only if in some direction it is farther out than
+// max(L(θ), floor). The fence surrounds a region without such points.
 type polygon struct {
 	reach kernel.Outline // L
 	floor float64
@@ -105,14 +104,12 @@ var sweepCompass = func() (c kernel.SweepCompass) {
 }()
 
 // widen takes in points of the motion.
-func (p *polygon) widen(points []kernel.Point) {
-	kernel.Widen(&p.reach, &compass, points)
-	p.raise(6)
-}
+func (p *polygon) widen(points []kernel.Point) { kernel.Widen(&p.reach, &compass, points) }
 
-// raise lifts the floor by so many bisections.
-func (p *polygon) raise(bisections int) {
-	most := kernel.Greatest(&p.reach)
+// raise lifts the floor by so many bisections, and returns the greatest L.
+func (p *polygon) raise(bisections int) (top float64) {
+	top = kernel.Greatest(&p.reach)
+	most := top
 	for range bisections {
 		middle := float64(0.5 * (p.floor + most))
 		if p.above(middle) > half {
@@ -121,6 +118,7 @@ func (p *polygon) raise(bisections int) {
 			most = middle
 		}
 	}
+	return top
 }
 
 // enclose sets the fence, and least.
@@ -169,7 +167,7 @@ func (p *polygon) isBeyond(x, y, share float64) bool {
 		return false
 	}
 	for i := range p.fence {
-		if math.Abs(math.FMA(p.fence[i].X, x, float64(p.fence[i].Y*y))) > share {
+		if math.Abs(toward(x, y, p.fence[i].X, p.fence[i].Y)) > share {
 			return true
 		}
 	}
@@ -211,6 +209,9 @@ var compass, twice = func() (single, double kernel.Compass) {
 	}
 	return single, double
 }()
+
+// toward returns the component of (x, y) in a direction.
+func toward(x, y, cos, sin float64) float64 { return math.FMA(cos, x, float64(sin*y)) }
 
 // sinCosDegrees returns the sine and cosine of k degrees, 0 <= k < 180, rounded
 // from twice the precision, so that their bits depend on no library.

@@ -132,7 +132,7 @@ func turned(first, second []float64, k int) []float64 {
 	cos, sin := compass.Cos[k], compass.Sin[k]
 	out := make([]float64, len(first))
 	for i, a := range first {
-		out[i] = math.FMA(cos, a, float64(sin*second[i]))
+		out[i] = toward(a, second[i], cos, sin)
 	}
 	return out
 }

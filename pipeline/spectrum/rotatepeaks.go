@@ -60,11 +60,9 @@ func newGroundPath(first, second []float64) groundPath {
 
 // step returns step k in a direction.
 func (p *groundPath) step(k int, cos, sin float64) groundStep {
-	toward := func(q kernel.Point) float64 { return math.FMA(cos, q.X, float64(sin*q.Y)) }
-	s := groundStep{u: toward(p.u[k]), v: toward(p.v[k]), a: toward(p.a[k])}
-	if k+1 < len(p.a) {
-		s.slope = toward(p.a[k+1]) - s.a
-	}
+	a, v, u, next := p.a[k], p.v[k], p.u[k], p.a[k+1]
+	s := groundStep{u: toward(u.X, u.Y, cos, sin), v: toward(v.X, v.Y, cos, sin), a: toward(a.X, a.Y, cos, sin)}
+	s.slope = toward(next.X, next.Y, cos, sin) - s.a
 	return s
 }
 
@@ -95,8 +93,7 @@ func (p *groundPath) peaks(points []kernel.Point, peak func(*groundStep) float64
 func (p *groundPath) look(outline *polygon, k int, points []kernel.Point, excess float64, peak func(*groundStep) float64) {
 	for i := range outline.reach[:Directions] {
 		cos, sin := compass.Cos[i], compass.Sin[i]
-		end := max(math.Abs(math.FMA(cos, points[k].X, float64(sin*points[k].Y))),
-			math.Abs(math.FMA(cos, points[k+1].X, float64(sin*points[k+1].Y))))
+		end := max(math.Abs(toward(points[k].X, points[k].Y, cos, sin)), math.Abs(toward(points[k+1].X, points[k+1].Y, cos, sin)))
 		if end+excess > outline.reach[i] {
 			s := p.step(k, cos, sin)
 			outline.reach[i] = max(outline.reach[i], peak(&s))

@@ -26,8 +26,9 @@ type rotation struct {
 	orbits                *kernel.OrbitFence // fast: what free vibrations do not leave it
 	lane                  [lanes]rotatedLane
 	points                []kernel.Point
-	order                 []int     // blocks
-	first, second         []float64 // D of the components
+	order                 []int                // blocks
+	levels                [maxLevel + 1]uint32 // slow: the lanes whose pieces have 2ⁱ steps
+	first, second         []float64            // D of the components
 	directions            directions
 	sweep                 *kernel.Sweep
 	displaced             *kernel.Displaced // fast
@@ -54,16 +55,19 @@ func (s *span) bound(u, a float64) float64 { return s.growth * (u + float64(s.re
 // its period is short, else one step or several (every).
 type rotatedLane struct {
 	polygon
-	one    *slow   // the oscillator, the shortest piece its step
-	cuts   int     // those in a step
-	whole  line    // of whole steps
-	every  int     // steps in a piece, 1 if cut
-	unit   float64 // of displacements that are swept
-	rows   span    // over the time between two samples that are looked at
-	piece  span    // over a piece, time in steps of one
-	pieces []piece
-	wide   int  // pieces that the polygon has taken in
-	fenced bool // whether the rotation has the fence of the polygon
+	index   int
+	phase   float64 // of whole steps
+	ringing *ringing
+	one     *slow   // the oscillator, the shortest piece its step
+	cuts    int     // those in a step
+	whole   line    // of whole steps
+	every   int     // steps in a piece, 1 if cut
+	unit    float64 // of displacements that are swept
+	rows    span    // over the time between two samples that are looked at
+	piece   span    // over a piece, time in steps of one
+	pieces  []piece
+	wide    int  // pieces that the polygon has taken in
+	fenced  bool // whether the rotation has the fence of the polygon
 }
 
 // piece is one that can matter: where it starts, how many steps it takes in, the
@@ -148,8 +152,9 @@ func norms(dst, first, second []kernel.Line) []kernel.Line {
 func (r *rotation) marks() []kernel.Mark { return r.pair[0].marks[:r.pair[0].blocks()] }
 
 // begin makes a lane ready.
-func (r *rotation) begin(l, index int) *rotatedLane {
+func (r *rotation) begin(l, index int, phase float64, ringing *ringing) *rotatedLane {
 	lane := &r.lane[l]
+	lane.index, lane.phase, lane.ringing = index, phase, ringing
 	lane.polygon.begin(r.first[index], r.second[index])
 	lane.pieces, lane.wide, lane.every, lane.fenced, lane.unit = lane.pieces[:0], 0, 1, false, 1
 	return lane
@@ -159,16 +164,35 @@ func (r *rotation) begin(l, index int) *rotatedLane {
 // closely: enough to know roughly what its motions reach in all directions.
 const sweptBlocks = 10
 
-// pairGroup is a group of oscillators whose marks have the peaks of both motions.
+// pairGroup is a group of oscillators, slow or fast.
 type pairGroup interface {
 	live() uint32
+	march(m *motion)                         // sets the marks of a motion
+	areSquares() bool                        // whether their peaks are
 	limitPair(r *rotation)                   // sets the screen of blocks from floors
 	sweep(r *rotation, b int)                // sweeps the samples of a block
 	gather(r *rotation, b int, flags uint32) // collects pieces of a block
+	last(m *motion, l int) state             // displacement and velocity at the end
 }
 
-// collect gathers the pieces of a group that can matter. lines is what blocks are
-// screened with.
+// solve puts RotD50 and RotD100 of a group whose lanes have begun into dst50 and
+// dst100. lines is what blocks are screened with.
+func (r *rotation) solve(g pairGroup, lines []kernel.Line, dst50, dst100 []float64) {
+	first, second := r.pair[0], r.pair[1]
+	g.march(first)
+	g.march(second)
+	marks := r.marks()
+	kernel.JoinPeaks(marks, marks, second.marks[:len(marks)], g.areSquares())
+	r.collect(g, lines)
+	for live := g.live(); live != 0; live &= live - 1 {
+		l := bits.TrailingZeros32(live)
+		lane, x, y := &r.lane[l], g.last(first, l), g.last(second, l)
+		end := pairEnd{x.x, y.x, x.y / lane.phase, y.y / lane.phase}
+		dst50[lane.index], dst100[lane.index] = r.finish(lane, end)
+	}
+}
+
+// collect gathers the pieces of a group that can matter.
 func (r *rotation) collect(g pairGroup, lines []kernel.Line) {
 	*r.pair[0].screen = kernel.Screen{}
 	g.limitPair(r)
@@ -189,13 +213,9 @@ func (r *rotation) collect(g pairGroup, lines []kernel.Line) {
 // inOrder lists the blocks that can matter, those first that have the greatest
 // peaks of most lanes, then those that can matter to most.
 func (r *rotation) inOrder(lines []kernel.Line, live uint32) []int {
-	m, marks := r.pair[0], r.marks()
-	kernel.GreatestPeaks(m.top, marks)
-	for l := range m.top {
-		m.tops.Limit[l] = math.Nextafter(m.top[l], -1)
-	}
-	kernel.ScreenPeaks(m.tops, marks, lines, m.done)
-	kernel.ScreenSquares(m.screen, marks, lines, m.flags)
+	m := r.pair[0]
+	m.flagTops(m.done)
+	kernel.ScreenSquares(m.screen, r.marks(), lines, m.flags)
 	r.order = r.order[:0]
 	for b := range m.flags {
 		if m.flags[b]&live != 0 {
@@ -232,6 +252,7 @@ func (r *rotation) absorb(flags uint32) {
 		}
 		r.points = lane.points(r.points[:0])
 		lane.widen(r.points)
+		lane.raise(6)
 		lane.enclose()
 		lane.fenced = false
 	}
@@ -333,9 +354,7 @@ func newParts(s groundedStep, cuts int) parts {
 }
 
 func (p *parts) next(o *slow) {
-	r := &o.exact
 	next := p.a + p.rise
-	u := p.u + ((float64(r.uu*p.u) + float64(r.uv*p.v)) + (float64(r.pu*p.a) + float64(r.qu*next)))
-	p.v = o.arrival(p.u, p.v, p.a, next)
-	p.u, p.a = u, next
+	p.u, p.v = p.u+o.change(p.u, p.v, p.a, next), o.arrival(p.u, p.v, p.a, next)
+	p.a = next
 }

@@ -10,33 +10,14 @@ import (
 // rotate puts RotD50 and RotD100 of the members into dst50 and dst100, in units
 // of the motion.
 func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
-	g.march(r.pair[0])
-	g.march(r.pair[1])
 	for l := range g.members {
 		o := &g.members[l]
-		lane := r.begin(l, o.index)
+		lane := r.begin(l, o.index, o.phase, &o.ringing)
 		lane.one, lane.cuts, lane.whole = &o.part, o.parts, newLine(o.phase, o.part.damping)
 		r.displaced.Scale[l], r.displaced.Slope[l], r.displaced.Level[l] = 1/o.cube, o.turn.jump/o.cube, -o.phase/o.cube
 		lane.piece = newSpan(o.part.phase, o.part.damping, 1)
 	}
-	marks := r.marks()
-	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], true)
-	r.collect(g, r.blockNorms)
-	for l := range g.members {
-		o := &g.members[l]
-		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
-		end := pairEnd{x.x, y.x, x.y / o.phase, y.y / o.phase}
-		dst50[o.index], dst100[o.index] = r.finish(l, &o.ringing, end)
-	}
-}
-
-// last returns displacement and velocity at the last sample. The state is
-// relative to the line of the last step, carried on.
-func (g *fastGroup) last(m *motion, l int) state {
-	o, n := &g.members[l], m.steps()
-	end, slope := &m.marks[m.blocks()], m.a[n]-m.a[n-1]
-	s := state{end.X[l], end.Y[l]}
-	return state{o.displacement(s, m.a[n], slope), o.velocity(s, slope)}
+	r.solve(g, r.blockNorms, dst50, dst100)
 }
 
 // limitPair is limit with the floor in place of best.
@@ -49,12 +30,24 @@ func (g *fastGroup) limitPair(r *rotation) {
 	}
 }
 
+// areSquares tells that peaks of marks are squares.
+func (g *fastGroup) areSquares() bool { return true }
+
+// trace marches a block of both motions again, for the lanes flagged, and returns
+// its first step and the first after it.
+func (g *fastGroup) trace(r *rotation, b int, flags uint32) (from, to int) {
+	from, to = r.pair[0].block(b)
+	for _, m := range r.pair {
+		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], m.states[:to-from], flags)
+	}
+	return from, to
+}
+
 // sweep marches a block of both motions again and sweeps their samples.
 func (g *fastGroup) sweep(r *rotation, b int) {
-	from, to := r.pair[0].block(b)
+	from, to := g.trace(r, b, g.live())
 	n := to - from
 	for _, m := range r.pair {
-		kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], m.states[:n], g.live())
 		kernel.Displace(m.rows[:n], r.displaced, m.states[:n], m.a[from:to+1])
 	}
 	r.sweep.Add(&sweepCompass, r.pair[0].rows[:n], r.pair[1].rows[:n])
@@ -66,12 +59,9 @@ func (g *fastGroup) gather(r *rotation, b int, flags uint32) {
 	if flags == 0 {
 		return
 	}
-	m := r.pair[0]
-	from, to := m.block(b)
+	from, to := g.trace(r, b, flags)
 	n := to - from
-	x, y, stepFlags := m.states[:n], r.pair[1].states[:n], m.stepFlags[:n]
-	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], x, flags)
-	kernel.TraceFast(g.turn, &r.pair[1].marks[b], r.pair[1].bend[from:to], y, flags)
+	x, y, stepFlags := r.pair[0].states[:n], r.pair[1].states[:n], r.pair[0].stepFlags[:n]
 	g.setFence(r, flags)
 	kernel.ScreenOrbits(r.orbits, x, y, r.stepNorms[from:to], stepFlags, flags)
 	for k := range stepFlags {

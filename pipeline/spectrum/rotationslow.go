@@ -13,34 +13,29 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 	for l := range g.members {
 		g.begin(r, l)
 	}
-	g.march(r.pair[0])
-	g.march(r.pair[1])
-	marks := r.marks()
-	kernel.JoinPeaks(marks, marks, r.pair[1].marks[:len(marks)], false)
+	r.levels = r.lanesByEvery(g.live())
 	lines := r.blockNorms
 	if g.stride != nil {
 		lines = r.strideNorms[g.level]
 	}
-	r.collect(g, lines)
-	for l := range g.members {
-		o := &g.members[l]
-		x, y := g.last(r.pair[0], l), g.last(r.pair[1], l)
-		end := pairEnd{x.x, y.x, x.y / o.phase, y.y / o.phase}
-		dst50[o.index], dst100[o.index] = r.finish(l, &o.ringing, end)
-	}
+	r.solve(g, lines, dst50, dst100)
 }
 
 // closeness is what the ground and the spring may add between the ends of a
 // piece of several steps, as a share of D.
 const closeness = 0.002
 
-// maxEvery is the greatest number of steps in a piece, a divisor of blockSteps.
-const maxEvery = 16
+// maxEvery is the greatest number of steps in a piece, 2 to the power of maxLevel
+// and a divisor of blockSteps.
+const (
+	maxLevel = 4
+	maxEvery = 1 << maxLevel
+)
 
 // begin chooses the pieces of a lane.
 func (g *slowGroup) begin(r *rotation, l int) {
 	o := &g.members[l]
-	lane := r.begin(l, o.index)
+	lane := r.begin(l, o.index, o.phase, &o.ringing)
 	lane.unit = math.Abs(o.eq.scale)
 	lane.one, lane.cuts = o, 1
 	if o.parts > 1 {
@@ -65,11 +60,6 @@ func everyOf(phase, ground, d float64) int {
 	return every
 }
 
-func (g *slowGroup) last(m *motion, l int) state {
-	end := &m.marks[m.blocks()]
-	return g.members[l].ending(m, state{end.X[l], end.Y[l]})
-}
-
 // limitPair is limit with the floor in place of best.
 func (g *slowGroup) limitPair(r *rotation) {
 	m := r.pair[0]
@@ -88,16 +78,23 @@ func (g *slowGroup) limitPair(r *rotation) {
 	}
 }
 
+// areSquares tells that peaks of marks are not squares.
+func (g *slowGroup) areSquares() bool { return false }
+
+// traceBoth marches a block of both motions again, for the lanes flagged, and
+// returns the first sample and their number.
+func (g *slowGroup) traceBoth(r *rotation, b int, flags uint32) (from, rows int) {
+	from, to := g.samples(r.pair[0], b)
+	rows = to - from + 1
+	for _, m := range r.pair {
+		g.trace(m, b, from, m.rows[:rows], flags)
+	}
+	return from, rows
+}
+
 // sweep marches a block of both motions again and sweeps their samples.
 func (g *slowGroup) sweep(r *rotation, b int) {
-	from, to := r.pair[0].block(b)
-	if g.stride == nil {
-		from = max(from, 1)
-	}
-	rows := to - from + 1
-	for _, m := range r.pair {
-		g.trace(m, b, from, m.rows[:rows], g.live())
-	}
+	_, rows := g.traceBoth(r, b, g.live())
 	r.sweep.Add(&sweepCompass, r.pair[0].rows[:rows], r.pair[1].rows[:rows])
 }
 
@@ -107,35 +104,31 @@ func (g *slowGroup) gather(r *rotation, b int, flags uint32) {
 	if flags == 0 {
 		return
 	}
-	from, to := r.pair[0].block(b)
-	if g.stride == nil {
-		from = max(from, 1)
-	}
-	rows := to - from + 1
+	from, rows := g.traceBoth(r, b, flags)
 	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
-	g.trace(r.pair[0], b, from, x, flags)
-	g.trace(r.pair[1], b, from, y, flags)
 	g.setFence(r, flags, r.blockNorms[b].First)
 	kernel.ScreenFence(r.fence, x, y, rowFlags, flags)
 	if from == 1 {
 		g.gatherFirst(r, flags)
 	}
-	for every := 1; every <= maxEvery; every *= 2 {
-		if chosen := flags & r.lanesOf(every, rows == blockSteps+1); chosen != 0 {
-			g.gatherPieces(r, from, rows, every, r.blockNorms[b].First, chosen)
+	if rows <= blockSteps { // in a block that is not whole pieces are steps
+		g.gatherPieces(r, from, rows, 1, r.blockNorms[b].First, flags)
+		return
+	}
+	for i, level := range r.levels {
+		if chosen := flags & level; chosen != 0 {
+			g.gatherPieces(r, from, rows, 1<<i, r.blockNorms[b].First, chosen)
 		}
 	}
 }
 
-// lanesOf flags the lanes whose pieces have so many steps, in a block that is
-// whole or not; in one that is not, pieces are steps.
-func (r *rotation) lanesOf(every int, whole bool) (flags uint32) {
-	for l := range r.lane {
-		if whole && r.lane[l].every == every || !whole && every == 1 {
-			flags |= 1 << l
-		}
+// lanesByEvery flags the lanes whose pieces have 2ⁱ steps.
+func (r *rotation) lanesByEvery(live uint32) (levels [maxLevel + 1]uint32) {
+	for ; live != 0; live &= live - 1 {
+		l := bits.TrailingZeros32(live)
+		levels[bits.TrailingZeros(uint(r.lane[l].every))] |= 1 << l
 	}
-	return flags
+	return levels
 }
 
 // setFence sets the limits of lanes for a block with ground accelerations up to a.

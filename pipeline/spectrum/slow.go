@@ -168,6 +168,13 @@ func (o *slow) velocity(u, change, a, next float64) float64 {
 	return float64(o.inverse * (change - (float64(r.uu*u) + forced)))
 }
 
+// change returns the change of displacement over a step from displacement u and
+// velocity v under ground acceleration from a to next.
+func (o *slow) change(u, v, a, next float64) float64 {
+	r := &o.exact
+	return (float64(r.uu*u) + float64(r.uv*v)) + (float64(r.pu*a) + float64(r.qu*next))
+}
+
 // arrival returns the velocity at the next sample from displacement u and
 // velocity v at this one.
 func (o *slow) arrival(u, v, a, next float64) float64 {

@@ -70,17 +70,19 @@ func (g *slowGroup) solve(dst []float64, m *motion) {
 	if g.members[0].tail == 0 {
 		g.refine(m)
 	}
-	end := &m.marks[m.blocks()]
 	for l := range g.members {
 		o := &g.members[l]
 		if o.tail > 0 {
-			dst[o.index] = o.ring(m, m.best[l], state{end.X[l], end.Y[l]})
+			dst[o.index] = o.ring(m, m.best[l], m.final(l))
 			continue
 		}
-		last := o.ending(m, state{end.X[l], end.Y[l]})
+		last := g.last(m, l)
 		dst[o.index] = o.ringing.peak(m.best[l], last.x, last.y/o.phase)
 	}
 }
+
+// last returns displacement and velocity at the last sample.
+func (g *slowGroup) last(m *motion, l int) state { return g.members[l].ending(m, m.final(l)) }
 
 // march sets the marks of all blocks.
 func (g *slowGroup) march(m *motion) {
@@ -130,10 +132,8 @@ func (g *slowGroup) restart(m *motion, b int, flags uint32) {
 	for left := flags & g.live(); left != 0; left &= left - 1 {
 		l := bits.TrailingZeros32(left)
 		o := &g.members[l]
-		r := &o.exact
 		u := mark.X[l]
-		forced := float64(r.pu*a) + float64(r.qu*next)
-		change := (float64(r.uu*u) + float64(r.uv*mark.Y[l])) + forced
+		change := o.change(u, mark.Y[l], a, next)
 		m.start.X[l], m.start.Y[l] = (u+change)/o.eq.scale, change/o.eq.scale
 	}
 }
@@ -141,17 +141,14 @@ func (g *slowGroup) restart(m *motion, b int, flags uint32) {
 // sampled sets best to the greatest |u| at samples, and flags the blocks that
 // have it.
 func (g *slowGroup) sampled(m *motion) {
-	marks := m.marks[:m.blocks()]
-	kernel.GreatestPeaks(m.top, marks)
+	m.flagTops(m.flags)
 	*m.screen = kernel.Screen{}
-	for l := range m.top {
-		m.screen.Limit[l] = math.Nextafter(m.top[l], -1)
+	for l := range m.best {
 		m.best[l] = 0
 	}
 	for l := range g.members {
 		m.best[l] = float64(g.unit(l) * m.top[l])
 	}
-	kernel.ScreenPeaks(m.screen, marks, m.blockLines, m.flags)
 }
 
 // refine raises best to the greatest |u| of the steps, beginning with the blocks
@@ -210,11 +207,17 @@ func (g *slowGroup) limit(m *motion) {
 func (g *slowGroup) screenSteps() {
 	for l := range g.members {
 		o := &g.members[l]
-		linear, square := o.series.linear, o.series.square
-		share := 1 / ((1 - float64(linear*0.5)) - float64(square*0.125))
+		share, curve, slope := curvature(o.series.linear, o.series.square)
 		g.screen.Force[l] = share / math.Abs(o.eq.scale)
-		g.screen.Curve[l], g.screen.Slope[l] = float64(share*square), float64(share*linear)
+		g.screen.Curve[l], g.screen.Slope[l] = curve, slope
 	}
+}
+
+// curvature returns what M is made of, per unit of the ground acceleration, of the
+// displacement and of its change, from 2ζφ and φ².
+func curvature(linear, square float64) (force, curve, slope float64) {
+	share := 1 / ((1 - float64(linear*0.5)) - float64(square*0.125))
+	return share, float64(share * square), float64(share * linear)
 }
 
 // enter marches a block again and looks into the steps that can beat best, for
@@ -223,10 +226,7 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 	if flags == 0 {
 		return
 	}
-	from, to := m.block(b)
-	if g.stride == nil {
-		from = max(from, 1)
-	}
+	from, to := g.samples(m, b)
 	a := m.a[from : to+1]
 	rows, stepFlags := m.rows[:len(a)], m.stepFlags[:len(a)-1]
 	g.trace(m, b, from, rows, flags)
@@ -246,6 +246,16 @@ func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
 			m.best[l] = o.between(m.best[l], rows, l, k, a)
 		}
 	}
+}
+
+// samples returns the first and the last sample of a block of which a trace gives
+// u: a march of steps begins at sample 1.
+func (g *slowGroup) samples(m *motion, b int) (from, to int) {
+	from, to = m.block(b)
+	if g.stride == nil {
+		from = max(from, 1)
+	}
+	return from, to
 }
 
 // trace sets rows to u at the samples of a block, of which from is the first,
