@@ -10,9 +10,10 @@ import (
 )
 
 // compute fills in some periods of some motions of o from samples, both given by
-// position, and notes those whose samples do not allow it. A motion is the unit of work; the samples of at most GOMAXPROCS
-// motions are in memory. The snapshot is one connection, whose calls database/sql
-// carries out one at a time; decompression and solving run side by side.
+// position, and notes those whose samples do not allow it. A motion is the unit of
+// work; the samples of at most GOMAXPROCS motions are in memory. The snapshot is
+// one connection, whose calls database/sql carries out one at a time;
+// decompression and solving run side by side.
 func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, out *unfit, which, missing []int) error {
 	if len(missing) == 0 {
 		return nil

@@ -10,7 +10,16 @@ import (
 var peaks = map[string]bool{"pga_g": true, "pgv_m_s": true, "pgd_m": true}
 
 // usesPeaks reports whether the expression cannot be decided without peaks.
-func (w *where) usesPeaks() bool { return w.uses("pga_g") || w.uses("pgv_m_s") || w.uses("pgd_m") }
+func (w *where) usesPeaks() bool { return w != nil && hasPeak(w.names) }
+
+func hasPeak(names map[string]bool) bool {
+	for name := range peaks {
+		if names[name] {
+			return true
+		}
+	}
+	return false
+}
 
 // possibleText is an expression that is true wherever the given one can be, with
 // whatever peaks: each condition on a peak is taken for met, or under "not" for
@@ -39,10 +48,8 @@ func supposed(node ast.Node, want bool) ast.Node {
 	}
 	used := &inspector{used: map[string]bool{}}
 	ast.Walk(&node, used)
-	for name := range used.used {
-		if peaks[name] {
-			return &ast.BoolNode{Value: want}
-		}
+	if hasPeak(used.used) {
+		return &ast.BoolNode{Value: want}
 	}
 	return node
 }

@@ -11,6 +11,14 @@ var newmarkParts = [...]float64{NewmarkAverage: 4, NewmarkLinear: 6}
 // isNewmark tells whether the method is one of Newmark's.
 func (m Method) isNewmark() bool { return m == NewmarkAverage || m == NewmarkLinear }
 
+// maxPeriodStep is the greatest T/dt of the method.
+func (m Method) maxPeriodStep() float64 {
+	if m.isNewmark() {
+		return MaxPeriodStepNewmark
+	}
+	return MaxPeriodStep
+}
+
 // accepts returns an error, wrapping ErrOscillator, for a period that the method
 // cannot take in steps of stepS: one outside the limits of the package, or too
 // short to be stable.
@@ -25,11 +33,7 @@ func (m Method) isNewmark() bool { return m == NewmarkAverage || m == NewmarkLin
 // Source: Newmark (1959); Bathe and Wilson (1973), where the limit is dt/T =
 // √3/π = 0.551.
 func (m Method) accepts(o Oscillator, stepS float64) error {
-	most := MaxPeriodStep
-	if m.isNewmark() {
-		most = MaxPeriodStepNewmark
-	}
-	ratio := o.PeriodS / stepS
+	ratio, most := o.PeriodS/stepS, m.maxPeriodStep()
 	if !(ratio >= MinPeriodStep && ratio <= most) {
 		return fmt.Errorf("%w: period %g s is %g steps of %g s, outside %g to %g",
 			ErrOscillator, o.PeriodS, ratio, stepS, MinPeriodStep, most)

@@ -77,10 +77,7 @@ type StepError struct {
 
 // Error names the limit that is exceeded.
 func (e *StepError) Error() string {
-	most := MaxPeriodStep
-	if e.Method.isNewmark() {
-		most = MaxPeriodStepNewmark
-	}
+	most := e.Method.maxPeriodStep()
 	is, limit := "long", fmt.Sprintf("takes %g steps a period at least", MinPeriodStep)
 	switch {
 	case e.PeriodS/e.StepS > most:

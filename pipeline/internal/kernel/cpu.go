@@ -34,14 +34,26 @@ type level struct {
 }
 
 var portable = level{
-	name:      Portable,
-	marchSlow: marchSlowGeneric, traceSlow: traceSlowGeneric,
-	marchFast: marchFastGeneric, traceFast: traceFastGeneric,
-	screen: screenGeneric, screenSquares: screenSquaresGeneric,
-	screenSteps: screenStepsGeneric, greatest: greatestGeneric,
-	marchStride: marchStrideGeneric, mix: mixGeneric,
-	widen: widenGeneric, above: aboveGeneric, screenFence: screenFenceGeneric,
-	greatestOf: greatestOfGeneric, exceeds: exceedsGeneric, sweep: sweepGeneric, displace: displaceGeneric, screenOrbits: screenOrbitsGeneric, project: projectGeneric,
+	name:          Portable,
+	marchSlow:     marchSlowGeneric,
+	traceSlow:     traceSlowGeneric,
+	marchFast:     marchFastGeneric,
+	traceFast:     traceFastGeneric,
+	screen:        screenGeneric,
+	screenSquares: screenSquaresGeneric,
+	screenSteps:   screenStepsGeneric,
+	greatest:      greatestGeneric,
+	marchStride:   marchStrideGeneric,
+	mix:           mixGeneric,
+	widen:         widenGeneric,
+	above:         aboveGeneric,
+	screenFence:   screenFenceGeneric,
+	greatestOf:    greatestOfGeneric,
+	exceeds:       exceedsGeneric,
+	sweep:         sweepGeneric,
+	displace:      displaceGeneric,
+	screenOrbits:  screenOrbitsGeneric,
+	project:       projectGeneric,
 }
 
 // levels are the kernels that this processor runs, the fastest first.

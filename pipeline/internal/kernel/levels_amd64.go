@@ -21,8 +21,15 @@ func vectorLevels() []level {
 			greatest:      maximum(greatestAVX512),
 			marchStride:   strideMarch(marchStrideAVX512),
 			mix:           mixing(mixAVX512),
-			widen:         widening(widenAVX512), above: masking(aboveAVX512), screenFence: fencing(screenFenceAVX512),
-			greatestOf: greatestNumber(greatestOfAVX512), exceeds: exceeding(exceedsAVX512), sweep: sweeping(sweepAVX512), displace: displacing(displaceAVX512), screenOrbits: orbiting(screenOrbitsAVX512), project: projecting(projectAVX512),
+			widen:         widening(widenAVX512),
+			above:         masking(aboveAVX512),
+			screenFence:   fencing(screenFenceAVX512),
+			greatestOf:    greatestNumber(greatestOfAVX512),
+			exceeds:       exceeding(exceedsAVX512),
+			sweep:         sweeping(sweepAVX512),
+			displace:      displacing(displaceAVX512),
+			screenOrbits:  orbiting(screenOrbitsAVX512),
+			project:       projecting(projectAVX512),
 		})
 	}
 	if cpu.X86.HasAVX2 && cpu.X86.HasFMA {
@@ -38,8 +45,15 @@ func vectorLevels() []level {
 			greatest:      maximum(greatestAVX2),
 			marchStride:   strideMarch(marchStrideAVX2),
 			mix:           mixing(mixAVX2),
-			widen:         widening(widenAVX2), above: masking(aboveAVX2), screenFence: fencing(screenFenceAVX2),
-			greatestOf: greatestNumber(greatestOfAVX2), exceeds: exceeding(exceedsAVX2), sweep: sweeping(sweepAVX2), displace: displacing(displaceAVX2), screenOrbits: orbiting(screenOrbitsAVX2), project: projecting(projectAVX2),
+			widen:         widening(widenAVX2),
+			above:         masking(aboveAVX2),
+			screenFence:   fencing(screenFenceAVX2),
+			greatestOf:    greatestNumber(greatestOfAVX2),
+			exceeds:       exceeding(exceedsAVX2),
+			sweep:         sweeping(sweepAVX2),
+			displace:      displacing(displaceAVX2),
+			screenOrbits:  orbiting(screenOrbitsAVX2),
+			project:       projecting(projectAVX2),
 		})
 	}
 	return list
