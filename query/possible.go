@@ -3,18 +3,20 @@ package query
 import (
 	"github.com/expr-lang/expr/ast"
 	"github.com/expr-lang/expr/parser"
+
+	"swaybook/db"
 )
 
-// peaks are the attributes of a rotated pair that may have to be computed from its
-// samples.
-var peaks = map[string]bool{"pga_g": true, "pgv_m_s": true, "pgd_m": true}
+// isPeak reports whether an attribute is one that a rotated pair may have to be
+// asked for: its samples give it where it is not stored.
+func isPeak(name string) bool { return attributeDetails[name]&db.DetailPeaks != 0 }
 
 // usesPeaks reports whether the expression cannot be decided without peaks.
 func (w *where) usesPeaks() bool { return w != nil && hasPeak(w.names) }
 
 func hasPeak(names map[string]bool) bool {
-	for name := range peaks {
-		if names[name] {
+	for name, used := range names {
+		if used && isPeak(name) {
 			return true
 		}
 	}

@@ -129,7 +129,7 @@ func (p *picker) addPeaks(ctx context.Context, snapshot *db.Snapshot, held []db.
 // mayTake reports whether a rotated motion is taken with some peaks.
 func (p *picker) mayTake(m *motion) (bool, error) {
 	unknown, met, err := p.ask(m)
-	return met && p.sitings[m.members[0].Record.Siting] && (unknown == "" || peaks[unknown]), err
+	return met && p.sitings[m.members[0].Record.Siting] && (unknown == "" || isPeak(unknown)), err
 }
 
 // computePeaks is of a rotated motion.

@@ -170,7 +170,7 @@ func (p *picker) ask(m *motion) (unknown string, met bool, err error) {
 	switch unknown = p.condition.unknown(&a); {
 	case unknown == "":
 		met, err = p.condition.met(&a)
-	case peaks[unknown] && m.isRotated():
+	case isPeak(unknown) && m.isRotated():
 		met, err = p.condition.canBeMet(&a)
 	default:
 		met = true

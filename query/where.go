@@ -115,7 +115,7 @@ func (w *where) unknown(a *attributes) string {
 	for _, i := range w.used {
 		switch name := numbers[i].name; {
 		case numbers[i].known(a):
-		case !peaks[name]:
+		case !isPeak(name):
 			return name
 		case peak == "":
 			peak = name
