@@ -13,8 +13,13 @@ import (
 // accepted beyond it are common practice.
 type at2 struct{}
 
-// Name returns "at2".
-func (at2) Name() string { return "at2" }
+// Info describes the format.
+func (at2) Info() Info {
+	return Info{
+		Name: "at2", Title: "four header lines, then free-form numbers (.AT2)", Channels: "one",
+		Unit: "as stated in line 3, usually g",
+	}
+}
 
 // at2HeaderLines is how far down a header may reach: four lines are the rule,
 // some files have more.
@@ -22,7 +27,8 @@ const at2HeaderLines = 8
 
 // Sniff looks for a line with point count and time step below a line that names
 // the quantity, or for a title that names a spectrum.
-func (at2) Sniff(t *Text) string {
+func (at2) Sniff(c *Content) string {
+	t := c.Text
 	switch {
 	case at2PairLine(t) > 0:
 		return "quantity line above a line of NPTS and DT"
@@ -34,7 +40,8 @@ func (at2) Sniff(t *Text) string {
 
 // Parse reads the one channel of a file. Velocities, displacements and spectra
 // are *NotMotionError.
-func (at2) Parse(t *Text, hints Hints) ([]Channel, error) {
+func (at2) Parse(content *Content, hints Hints) ([]Channel, error) {
+	t := content.Text
 	pair := at2PairLine(t)
 	if pair == 0 {
 		return nil, &NotMotionError{"a response spectrum, not a time series"}

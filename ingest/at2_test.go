@@ -317,7 +317,7 @@ func BenchmarkAT2(b *testing.B) {
 			b.SetBytes(int64(len(data)))
 			b.ReportAllocs()
 			for b.Loop() {
-				if _, err := (at2{}).Parse(text, Hints{}); err != nil {
+				if _, err := (at2{}).Parse(&Content{Text: text}, Hints{}); err != nil {
 					b.Fatal(err)
 				}
 			}

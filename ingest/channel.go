@@ -125,6 +125,6 @@ type Channel struct {
 	// sign is not significant.
 	HeaderPeak Number
 
-	Line     int      // 1-based line of the first sample
+	Line     int      // 1-based line of the first sample; 0 where the file has no lines
 	Warnings []string // what a reader accepted but a person should know
 }

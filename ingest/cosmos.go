@@ -19,13 +19,19 @@ import (
 // and, where marked "from memory" beside a code, common practice.
 type cosmos struct{}
 
-// Name returns "cosmos".
-func (cosmos) Name() string { return "cosmos" }
+// Info describes the format.
+func (cosmos) Info() Info {
+	return Info{
+		Name: "cosmos", Title: "COSMOS strong-motion text, version 1.20", Channels: "one or more",
+		Unit: "as stated", NotRead: "V0 counts without a complete calibration",
+	}
+}
 
 var cosmosOpening = regexp.MustCompile(`(?i)\(\s*format v\s*(\d+\.\d+)\D+(\d+)\s+text lines?\b`)
 
 // Sniff looks for the version and count of text lines in the first line.
-func (cosmos) Sniff(t *Text) string {
+func (cosmos) Sniff(c *Content) string {
+	t := c.Text
 	if m := cosmosOpening.FindString(words(t, nextText(t, 1))); m != "" {
 		return "first line says " + strings.TrimLeft(m, "( ")
 	}
@@ -33,7 +39,8 @@ func (cosmos) Sniff(t *Text) string {
 }
 
 // Parse reads all sections of the file.
-func (cosmos) Parse(t *Text, hints Hints) ([]Channel, error) {
+func (cosmos) Parse(content *Content, hints Hints) ([]Channel, error) {
+	t := content.Text
 	r := cosmosReader{text: t, hints: hints, skipped: map[string]int{}}
 	for line := nextText(t, 1); line <= t.Len(); line = nextText(t, line) {
 		next, err := r.section(line)

@@ -358,7 +358,7 @@ func TestCosmosSniff(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		if got := (cosmos{}).Sniff(text); (got != "") != want {
+		if got := (cosmos{}).Sniff(&Content{Text: text}); (got != "") != want {
 			t.Errorf("Sniff(%q) = %q, want accepted %v", first, got, want)
 		}
 	}

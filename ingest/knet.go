@@ -12,8 +12,13 @@ import (
 // are common practice.
 type knet struct{}
 
-// Name returns "knet".
-func (knet) Name() string { return "knet" }
+// Info describes the format.
+func (knet) Info() Info {
+	return Info{
+		Name: "knet", Title: "K-NET and KiK-net ASCII (NIED)", Channels: "one",
+		Unit: "counts with a scale in gal", NotRead: "WIN32 binary",
+	}
+}
 
 // knetDelay is how long before its "Record Time" a file's first sample was
 // taken: the delay of the recorder's trigger.
@@ -80,7 +85,8 @@ var knetPlaces = map[string]struct {
 
 // Sniff looks for three labels of the header in the first lines, two of them
 // those that no other format has.
-func (knet) Sniff(t *Text) string {
+func (knet) Sniff(c *Content) string {
+	t := c.Text
 	var seen [knetHeaderLines]bool
 	count := 0
 	for n := 1; n <= min(t.Len(), knetHeaderLines); n++ {
@@ -99,7 +105,8 @@ func (knet) Sniff(t *Text) string {
 
 // Parse reads the one channel of a file. Hints may repeat what the header says
 // of the time step and of the scale (gal), not contradict it.
-func (knet) Parse(t *Text, hints Hints) ([]Channel, error) {
+func (knet) Parse(content *Content, hints Hints) ([]Channel, error) {
+	t := content.Text
 	h, err := readKNETHeader(t)
 	if err != nil {
 		return nil, err

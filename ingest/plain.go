@@ -14,8 +14,13 @@ import (
 // The rules are common practice; there is no standard behind them.
 type plain struct{}
 
-// Name returns "plain".
-func (plain) Name() string { return "plain" }
+// Info describes the format.
+func (plain) Info() Info {
+	return Info{
+		Name: "plain", Title: "columns of numbers, by comma, semicolon, tab or blanks", Channels: "as many as are named",
+		Unit: "as stated in the file, or --unit",
+	}
+}
 
 const (
 	// plainPreamble is how many lines may stand before the first number.
@@ -28,7 +33,8 @@ const (
 
 // Sniff looks for lines of numbers: below the preamble 95 % of the first lines,
 // or all but two of them, must look like numbers.
-func (plain) Sniff(t *Text) string {
+func (plain) Sniff(c *Content) string {
+	t := c.Text
 	first := firstNumbers(t)
 	if first == 0 {
 		return ""
@@ -51,7 +57,8 @@ func (plain) Sniff(t *Text) string {
 }
 
 // Parse reads the value columns as channels.
-func (plain) Parse(t *Text, hints Hints) ([]Channel, error) {
+func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
+	t := content.Text
 	head, err := readPlainHead(t)
 	if err != nil {
 		return nil, err

@@ -447,7 +447,7 @@ func BenchmarkPlain(b *testing.B) {
 			b.SetBytes(int64(len(data)))
 			b.ReportAllocs()
 			for b.Loop() {
-				if _, err := (plain{}).Parse(text, Hints{Unit: "g"}); err != nil {
+				if _, err := (plain{}).Parse(&Content{Text: text}, Hints{Unit: "g"}); err != nil {
 					b.Fatal(err)
 				}
 			}

@@ -40,11 +40,17 @@ const (
 	spectraOpening = "response and fourier amplitude spectra"
 )
 
-// Name returns "california-v2".
-func (californiaV2) Name() string { return "california-v2" }
+// Info describes the format.
+func (californiaV2) Info() Info {
+	return Info{
+		Name: "california-v2", Title: "California strong-motion V2, fixed-width text", Channels: "one or more",
+		Unit: "cm/s²", NotRead: "uncorrected V1 files",
+	}
+}
 
 // Sniff looks at the first words.
-func (californiaV2) Sniff(t *Text) string {
+func (californiaV2) Sniff(c *Content) string {
+	t := c.Text
 	first := strings.ToLower(words(t, nextText(t, 1)))
 	if strings.Contains(first, "(format v") {
 		return ""
@@ -64,7 +70,8 @@ func opens(heading, opening string) bool {
 }
 
 // Parse reads all channels of the file.
-func (californiaV2) Parse(t *Text, hints Hints) ([]Channel, error) {
+func (californiaV2) Parse(content *Content, hints Hints) ([]Channel, error) {
+	t := content.Text
 	line := nextText(t, 1)
 	first := strings.ToLower(words(t, line))
 	switch {

@@ -312,7 +312,7 @@ func TestV2Sniff(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		if got := (californiaV2{}).Sniff(text); (got != "") != want {
+		if got := (californiaV2{}).Sniff(&Content{Text: text}); (got != "") != want {
 			t.Errorf("Sniff(%q) = %q, want accepted %v", first, got, want)
 		}
 	}

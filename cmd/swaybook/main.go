@@ -100,6 +100,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			ingestCommand(),
 			queryCommand(),
 			exportCommand(),
+			formatsCommand(),
 			demoCommand(),
 		},
 		Writer:         stdout,
