@@ -166,7 +166,7 @@ func TestNoOpenFusing(t *testing.T) {
 	}
 	for _, target := range []string{"GOARCH=arm64", "GOARCH=amd64 GOAMD64=v3"} {
 		t.Run(target, func(t *testing.T) {
-			cmd := exec.Command(tool, "build", "-gcflags=-S", ".", "../internal/kernel")
+			cmd := exec.Command(tool, "build", "-gcflags=-S", ".", "../internal/kernel", "../geodesy")
 			cmd.Env = append(cmd.Environ(), append(strings.Fields(target), "GOOS=linux", "CGO_ENABLED=0", "GOFLAGS=")...)
 			listing, err := cmd.CombinedOutput()
 			if err != nil {
