@@ -48,6 +48,21 @@ type Station struct {
 	Longitude  Number // degrees, east positive
 	ElevationM Number
 	Vs30       Number // m/s
+	// SiteClass is the ground type of EN 1998-1 (A to E, S1, S2) that the file
+	// states, whether measured or inferred; "" where unknown.
+	SiteClass string
+}
+
+// Distances are the distances from an earthquake to a station whose kind a file
+// states, in km.
+//
+// Source: Abrahamson and Shedlock, Seismological Research Letters 68(1), 1997,
+// for the last two (from memory).
+type Distances struct {
+	EpicentralKM  Number // along the surface, to the epicentre
+	HypocentralKM Number // to the hypocentre
+	RuptureKM     Number // to the nearest point of the rupture
+	JoynerBooreKM Number // along the surface, to the rupture's projection onto it
 }
 
 // Siting says what an instrument stands on, which decides whether its motion
@@ -106,7 +121,8 @@ type Channel struct {
 	ChannelCode string // the station's or the file's own channel number, "" where there is none
 	Siting      Siting
 	Orientation Orientation
-	DistanceKM  Number // event to station, as stated
+	DistanceKM  Number // event to station, as stated, of unknown kind
+	Distances   Distances
 
 	Start time.Time // time of the first sample, UTC; zero where unknown
 	// StepS is the time between samples in s, > 0.

@@ -15,6 +15,7 @@ func (h *cosmosHeader) describe(c *Channel) {
 	h.describeEvent(&c.Event)
 	h.describeStation(&c.Station)
 	h.describeSensor(c)
+	c.Distances.EpicentralKM = h.distance()
 	c.Start = h.start(c)
 	c.LowCutHz, c.HighCutHz = h.corners(c)
 	c.HeaderPeak = h.real(64)
@@ -86,6 +87,15 @@ func (h *cosmosHeader) describeStation(s *Station) {
 	if v := h.real(4); v.Value > 0 {
 		s.Vs30 = v
 	}
+}
+
+// distance returns the epicentral distance of real 17. A zero is a field that
+// was left empty more often than a station on the epicentre.
+func (h *cosmosHeader) distance() Number {
+	if n := h.real(17); n.Value > 0 {
+		return n
+	}
+	return Number{}
 }
 
 // stationName returns the name from its column on, or from the start of the

@@ -68,6 +68,7 @@ func (s cosmosSample) headers() []string {
 	ints[49], ints[53] = s.channel, s.code
 	reals[0], reals[1], reals[2], reals[3] = 36.5, -121.25, 212, 340
 	reals[9], reals[10], reals[11], reals[12], reals[14] = 36.4, -121.1, 9, 5, 4.8
+	reals[16] = 17.43
 	reals[29], reals[33], reals[61], reals[62] = 22.25, s.step, s.step*1000, float64(len(s.x))*s.step
 	reals[63] = s.peak
 	reals[51] = s.height

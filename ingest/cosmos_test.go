@@ -40,6 +40,10 @@ func TestCosmosCorrected(t *testing.T) {
 	if c.Station != want {
 		t.Errorf("station = %+v, want %+v", c.Station, want)
 	}
+	// The sphere through both points of 6371 km gives 17.43 km.
+	if want := (Distances{EpicentralKM: Known(17.43)}); c.Distances != want || c.DistanceKM.Known {
+		t.Errorf("distances = %+v and %+v of unknown kind, want %+v alone", c.Distances, c.DistanceKM, want)
+	}
 	if c.Start.Format(time.RFC3339Nano) != "2019-03-04T05:15:22.25Z" {
 		t.Errorf("start = %v", c.Start)
 	}
@@ -148,6 +152,8 @@ func TestCosmosVariants(t *testing.T) {
 			func(c *Channel) bool { return c.Orientation.AzimuthDeg == Known(0) }, ""},
 		{"code against the text", edit(t, base, lineInts+5, "     360", "      90"),
 			func(c *Channel) bool { return c.Orientation.AzimuthDeg == Known(90) }, "90 taken"},
+		{"no distance", edit(t, base, lineReals+3, "      17.430000", "    -999.000000"), func(c *Channel) bool { return c.Distances == Distances{} }, ""},
+		{"distance left at zero", edit(t, base, lineReals+3, "      17.430000", "       0.000000"), func(c *Channel) bool { return c.Distances == Distances{} }, ""},
 		{"other null", edit(t, edit(t, base, 13, "-999, -999.0", "-32768, 1.0E30"), lineInts+4, "      63", "  -32768"),
 			func(c *Channel) bool { return c.StepS == 0.01 }, ""},
 		{"dt from the raw interval", edit(t, base, lineReals+12, "      10.000000", "    -999.000000"),
