@@ -52,6 +52,7 @@ type Format interface {
 var formats = []Format{
 	californiaV2{},
 	cosmos{},
+	esm{},
 	knet{},
 	at2{},
 }

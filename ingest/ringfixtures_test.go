@@ -6,6 +6,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 )
@@ -113,7 +114,7 @@ type ringFixture struct {
 // TestRingFixtures compares the committed files with what their generator
 // makes; with -update-ring it rewrites them.
 func TestRingFixtures(t *testing.T) {
-	for _, f := range append(v2Fixtures(t), cosmosFixtures(t)...) {
+	for _, f := range slices.Concat(v2Fixtures(t), cosmosFixtures(t), esmFixtures(t)) {
 		path := filepath.Join(recordsDir(f.format), f.name)
 		want := strings.Join(f.lines, f.ending) + f.ending
 		if *updateRing {
