@@ -89,9 +89,10 @@ const maxCatalogueErrors = 20
 //
 //	file event station network component
 //	event_name origin_time magnitude magnitude_type depth_km
-//	event_latitude event_longitude distance_km
+//	event_latitude event_longitude
+//	distance_km epicentral_km hypocentral_km rupture_km jb_km
 //	station_name station_latitude station_longitude elevation_m vs30_m_s
-//	siting instrument azimuth_deg unit dt_s low_cut_hz high_cut_hz
+//	site_class siting instrument azimuth_deg unit dt_s low_cut_hz high_cut_hz
 //
 // Rows may repeat what they say of an event or a station, and may not contradict
 // each other in it. Blank and -999 mean not stated. Times are RFC 3339 or a date. The error joins

@@ -59,7 +59,7 @@ func eventStatements(e *Event) []catalogueStatement {
 func stationStatements(s *Station) []catalogueStatement {
 	return []catalogueStatement{
 		{"station_name", s.Name}, {"station_latitude", numberText(s.Latitude)}, {"station_longitude", numberText(s.Longitude)},
-		{"elevation_m", numberText(s.ElevationM)}, {"vs30_m_s", numberText(s.Vs30)},
+		{"elevation_m", numberText(s.ElevationM)}, {"vs30_m_s", numberText(s.Vs30)}, {"site_class", s.SiteClass},
 	}
 }
 

@@ -239,6 +239,7 @@ func (row *catalogueRow) apply(ch *Channel) {
 	applyStation(&ch.Station, &from.Station)
 	ch.Instrument = orElse(from.Instrument, ch.Instrument)
 	ch.DistanceKM = from.DistanceKM.Or(ch.DistanceKM)
+	ch.Distances = from.Distances.Or(ch.Distances)
 	ch.LowCutHz = from.LowCutHz.Or(ch.LowCutHz)
 	ch.HighCutHz = from.HighCutHz.Or(ch.HighCutHz)
 	if from.Siting != "" {
@@ -276,6 +277,7 @@ func applyStation(to, from *Station) {
 	to.Longitude = from.Longitude.Or(to.Longitude)
 	to.ElevationM = from.ElevationM.Or(to.ElevationM)
 	to.Vs30 = from.Vs30.Or(to.Vs30)
+	to.SiteClass = orElse(from.SiteClass, to.SiteClass)
 }
 
 // Unmatched returns the lines of the rows that fitted nothing so far, in order.

@@ -154,9 +154,11 @@ func TestCatalogueColumns(t *testing.T) {
 	full := Channel{
 		Event: Event{ID: "7", Name: "7", Date: time.Date(2041, 3, 4, 0, 0, 0, 0, time.UTC), Latitude: seven, Longitude: seven, DepthKM: seven,
 			Magnitude: seven, MagnitudeType: "7"},
-		Station:    Station{Network: "7", Code: "7", Name: "7", Latitude: seven, Longitude: seven, ElevationM: seven, Vs30: seven},
+		Station:    Station{Network: "7", Code: "7", Name: "7", Latitude: seven, Longitude: seven, ElevationM: seven, Vs30: seven, SiteClass: "7"},
 		Instrument: "7", Siting: SitingGround, Orientation: Orientation{Axis: AxisHorizontal, AzimuthDeg: seven, Label: "NS"},
-		DistanceKM: seven, LowCutHz: Known(0.2), HighCutHz: seven,
+		DistanceKM: seven,
+		Distances:  Distances{EpicentralKM: seven, HypocentralKM: seven, RuptureKM: seven, JoynerBooreKM: seven},
+		LowCutHz:   Known(0.2), HighCutHz: seven,
 	}
 	if fmt.Sprintf("%+v", ch) != fmt.Sprintf("%+v", full) {
 		t.Errorf("channel %+v\nwant    %+v", ch, full)

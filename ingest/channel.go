@@ -65,6 +65,14 @@ type Distances struct {
 	JoynerBooreKM Number // along the surface, to the rupture's projection onto it
 }
 
+// Or returns d, with those of other where d knows none.
+func (d Distances) Or(other Distances) Distances {
+	return Distances{
+		EpicentralKM: d.EpicentralKM.Or(other.EpicentralKM), HypocentralKM: d.HypocentralKM.Or(other.HypocentralKM),
+		RuptureKM: d.RuptureKM.Or(other.RuptureKM), JoynerBooreKM: d.JoynerBooreKM.Or(other.JoynerBooreKM),
+	}
+}
+
 // Siting says what an instrument stands on, which decides whether its motion
 // is a ground motion.
 type Siting string
