@@ -201,8 +201,9 @@ type recordRow struct {
 func (v *recordRow) columns(d Details) (names string, into []any) {
 	names, into = `id, code, siting, event_id`, []any{&v.id, &v.Code, &v.Siting, &v.event}
 	if d&DetailRecord != 0 {
-		names += `, station_id, instrument, coalesce(start_at, ''), distance_km`
-		into = append(into, &v.station, &v.Instrument, &v.start, &v.DistanceKM)
+		names += `, station_id, instrument, coalesce(start_at, ''), distance_km, epicentral_km, hypocentral_km, rupture_km, jb_km`
+		d := &v.Distances
+		into = append(into, &v.station, &v.Instrument, &v.start, &d.BestKM, &d.EpicentralKM, &d.HypocentralKM, &d.RuptureKM, &d.JoynerBooreKM)
 	}
 	return names, into
 }

@@ -37,7 +37,8 @@ func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce(name, ''), coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`+where, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce((SELECT p.code FROM event p WHERE p.id = event.primary_id), code), coalesce(name, ''),
+		coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
 	}
@@ -47,7 +48,7 @@ func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[in
 		Event
 	}
 	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.id, &v.Code, &v.Name, &v.origin, &v.LatitudeDeg, &v.LongitudeDeg, &v.DepthKM, &v.Magnitude, &v.MagnitudeType}
+		return []any{&v.id, &v.OwnCode, &v.Code, &v.Name, &v.origin, &v.LatitudeDeg, &v.LongitudeDeg, &v.DepthKM, &v.Magnitude, &v.MagnitudeType}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
@@ -63,7 +64,7 @@ func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[in
 }
 
 func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s FROM station`+where, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s, coalesce(site_class, '') FROM station`+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read stations: %w", err)
 	}
@@ -72,7 +73,7 @@ func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[
 		Station
 	}
 	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.id, &v.Network, &v.Code, &v.Name, &v.LatitudeDeg, &v.LongitudeDeg, &v.ElevationM, &v.Vs30MPS}
+		return []any{&v.id, &v.Network, &v.Code, &v.Name, &v.LatitudeDeg, &v.LongitudeDeg, &v.ElevationM, &v.Vs30MPS, &v.SiteClass}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read stations: %w", err)

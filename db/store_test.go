@@ -44,8 +44,8 @@ var startsAt = time.Date(2026, 3, 12, 10, 15, 0, 250e6, time.UTC)
 // add stores an invented component whose SD at damping d and period p is
 // base + 10·d + p.
 func add(ctx context.Context, tx *Tx, g Generation, code, role string, base float64) error {
-	recordID, err := tx.PutRecord(ctx, Record{
-		Code: code, Siting: "free-field", Start: time.Date(2026, 3, 12, 10, 15, 0, 0, time.UTC), DistanceKM: number(12.5),
+	record, err := tx.PutRecord(ctx, Record{
+		Code: code, Siting: "free-field", Start: time.Date(2026, 3, 12, 10, 15, 0, 0, time.UTC), Distances: Distances{BestKM: number(12.5)},
 		Event:   &Event{Code: "EV1", Name: "Invented", Magnitude: number(6.1)},
 		Station: &Station{Network: "XX", Code: "ST1", Vs30MPS: number(420)},
 	}, false)
@@ -68,7 +68,7 @@ func add(ctx context.Context, tx *Tx, g Generation, code, role string, base floa
 	}
 	c := Component{Role: role, Axis: "horizontal", Label: role, StepS: 0.01, Samples: len(samples), Unit: "m/s2", Processing: "corrected",
 		AzimuthDeg: number(30), Start: startsAt, SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
-	return tx.AddComponent(ctx, recordID, c, data, digest, g.ID,
+	return tx.AddComponent(ctx, record.ID, c, data, digest, g.ID,
 		NewSpectra(computed, map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}))
 }
 
@@ -131,7 +131,7 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 			t.Errorf("order = %s", got)
 		}
 		c := cs[0]
-		if *c.Record.Event.Magnitude != 6.1 || *c.Record.Station.Vs30MPS != 420 || *c.Record.DistanceKM != 12.5 || c.PGA != 0.5 || c.PGD != 1.5 {
+		if *c.Record.Event.Magnitude != 6.1 || *c.Record.Station.Vs30MPS != 420 || *c.Record.Distances.BestKM != 12.5 || c.PGA != 0.5 || c.PGD != 1.5 {
 			t.Errorf("component = %+v", c)
 		}
 		if samples, err := v.Samples(t.Context(), c.RecordID, c.Role); err != nil || len(samples) != 100 {
@@ -225,14 +225,14 @@ func TestRolesChangePlaces(t *testing.T) {
 func TestMetadataIsFilledInOrOverridden(t *testing.T) {
 	s, _ := filledStore(t)
 	first := Record{Code: "R", Siting: "unknown", Event: &Event{Code: "E", Magnitude: number(5)}}
-	more := Record{Code: "R", Siting: "ground", DistanceKM: number(9), Event: &Event{Code: "E", Magnitude: number(6), DepthKM: number(8)}}
-	read := func() (siting string, magnitude, depth float64) {
+	more := Record{Code: "R", Siting: "ground", Instrument: "Roof", Event: &Event{Code: "E2"}}
+	read := func() (siting, instrument, event string) {
 		t.Helper()
-		err := s.read.QueryRowContext(t.Context(), `SELECT siting, magnitude, depth_km FROM record r JOIN event e ON e.id = r.event_id`).Scan(&siting, &magnitude, &depth)
+		err := s.read.QueryRowContext(t.Context(), `SELECT siting, instrument, e.code FROM record r JOIN event e ON e.id = r.event_id`).Scan(&siting, &instrument, &event)
 		if err != nil {
 			t.Fatal(err)
 		}
-		return siting, magnitude, depth
+		return siting, instrument, event
 	}
 	put := func(r Record, override bool) {
 		update(t, s, func(ctx context.Context, tx *Tx) error {
@@ -242,16 +242,16 @@ func TestMetadataIsFilledInOrOverridden(t *testing.T) {
 	}
 	put(first, false)
 	put(more, false)
-	if siting, m, d := read(); siting != "ground" || m != 5 || d != 8 {
-		t.Errorf("filled in: %s %v %v", siting, m, d)
+	if siting, instrument, event := read(); siting != "ground" || instrument != "" || event != "E" {
+		t.Errorf("filled in: %s %q %s", siting, instrument, event)
 	}
 	put(more, true)
-	if _, m, _ := read(); m != 6 {
-		t.Errorf("overridden: magnitude %v", m)
+	if _, instrument, event := read(); instrument != "Roof" || event != "E2" {
+		t.Errorf("overridden: %q %s", instrument, event)
 	}
-	put(Record{Code: "R", Siting: "unknown", Event: &Event{Code: "E"}}, true)
-	if siting, m, d := read(); siting != "ground" || m != 6 || d != 8 {
-		t.Errorf("an override with nothing stated: %s %v %v", siting, m, d)
+	put(Record{Code: "R", Siting: "unknown"}, true)
+	if siting, instrument, event := read(); siting != "ground" || instrument != "Roof" || event != "E2" {
+		t.Errorf("an override with nothing stated: %s %q %s", siting, instrument, event)
 	}
 }
 

@@ -37,7 +37,8 @@ const (
 
 // Event is an earthquake. Nil and empty fields are unknown.
 type Event struct {
-	Code          string
+	Code          string // where several stand for one earthquake, that of the first of them
+	OwnCode       string // that by which the record came; for reading only
 	Name          string
 	Origin        time.Time // UTC
 	LatitudeDeg   *float64
@@ -56,6 +57,7 @@ type Station struct {
 	LongitudeDeg *float64
 	ElevationM   *float64
 	Vs30MPS      *float64
+	SiteClass    string // as somebody states it
 }
 
 // Record is one event at one instrument. Event and Station are nil where
@@ -67,7 +69,16 @@ type Record struct {
 	Instrument string
 	Siting     string
 	Start      time.Time
-	DistanceKM *float64
+	Distances  Distances
+}
+
+// Distances are from the earthquake to the station, in km.
+type Distances struct {
+	BestKM        *float64
+	EpicentralKM  *float64
+	HypocentralKM *float64
+	RuptureKM     *float64
+	JoynerBooreKM *float64
 }
 
 // Component is one direction of a record, without its samples.

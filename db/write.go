@@ -5,7 +5,6 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
-	"strings"
 	"time"
 )
 
@@ -106,19 +105,12 @@ func (t *Tx) RejectionsOf(ctx context.Context, path, sha256 string) ([]Rejection
 	return rejections(ctx, t.tx, `WHERE path = ? AND sha256 = ?`, path, sha256)
 }
 
-// PutEvent stores the event under its code. Where it is known already, what
-// the store lacks is filled in; with override, what e states replaces what is
-// stored.
-func (t *Tx) PutEvent(ctx context.Context, e Event, override bool) (int64, error) {
-	query := upsert("event", []string{"code"}, []string{"name", "origin_time", "latitude_deg", "longitude_deg", "depth_km", "magnitude", "magnitude_type"}, override)
-	if override {
-		// A magnitude brings its type; without one it is of unknown type.
-		query = strings.Replace(query, "coalesce(excluded.magnitude_type, event.magnitude_type)",
-			"CASE WHEN excluded.magnitude IS NULL THEN coalesce(excluded.magnitude_type, event.magnitude_type) ELSE excluded.magnitude_type END", 1)
-	}
-	var id int64
-	err := t.tx.QueryRowContext(ctx, query, e.Code, textOrNull(e.Name), timeText(e.Origin), e.LatitudeDeg, e.LongitudeDeg,
-		e.DepthKM, e.Magnitude, textOrNull(e.MagnitudeType)).Scan(&id)
+// PutEvent returns the event of this code, which is stored as e where there is
+// none. What is taken of several who speak of it is for SetEvent to say.
+func (t *Tx) PutEvent(ctx context.Context, e Event) (int64, error) {
+	id, err := t.put(ctx, `INSERT INTO event (code, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude, magnitude_type)
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?) ON CONFLICT (code) DO UPDATE SET code = code RETURNING id`,
+		e.Code, textOrNull(e.Name), timeText(e.Origin), e.LatitudeDeg, e.LongitudeDeg, e.DepthKM, e.Magnitude, textOrNull(e.MagnitudeType))
 	if err != nil {
 		return 0, fmt.Errorf("store event %s: %w", e.Code, err)
 	}
@@ -126,22 +118,28 @@ func (t *Tx) PutEvent(ctx context.Context, e Event, override bool) (int64, error
 }
 
 // PutStation does for a station what PutEvent does for an event.
-func (t *Tx) PutStation(ctx context.Context, s Station, override bool) (int64, error) {
-	query := upsert("station", []string{"network", "code"}, []string{"name", "latitude_deg", "longitude_deg", "elevation_m", "vs30_m_s"}, override)
-	var id int64
-	err := t.tx.QueryRowContext(ctx, query, s.Network, s.Code, textOrNull(s.Name), s.LatitudeDeg, s.LongitudeDeg, s.ElevationM, s.Vs30MPS).Scan(&id)
+func (t *Tx) PutStation(ctx context.Context, s Station) (int64, error) {
+	id, err := t.put(ctx, `INSERT INTO station (network, code, name, latitude_deg, longitude_deg, elevation_m, vs30_m_s, site_class)
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?) ON CONFLICT (network, code) DO UPDATE SET code = code RETURNING id`,
+		s.Network, s.Code, textOrNull(s.Name), s.LatitudeDeg, s.LongitudeDeg, s.ElevationM, s.Vs30MPS, textOrNull(s.SiteClass))
 	if err != nil {
 		return 0, fmt.Errorf("store station %s: %w", s.Code, err)
 	}
 	return id, nil
 }
 
-// PutRecord stores the record under its code, with its event and station, by
-// the same rule as PutEvent. Only override changes the instrument.
-func (t *Tx) PutRecord(ctx context.Context, r Record, override bool) (int64, error) {
-	eventID, stationID, err := t.putParents(ctx, r, override)
+// put runs a statement that returns an id.
+func (t *Tx) put(ctx context.Context, query string, args ...any) (id int64, err error) {
+	return id, t.tx.QueryRowContext(ctx, query, args...).Scan(&id)
+}
+
+// PutRecord stores the record under its code, with its event and station. Where
+// it is known already, what the store lacks is filled in; with override, what r
+// states replaces what is stored.
+func (t *Tx) PutRecord(ctx context.Context, r Record, override bool) (RecordKey, error) {
+	eventID, stationID, err := t.putParents(ctx, r)
 	if err != nil {
-		return 0, err
+		return RecordKey{}, err
 	}
 	first, second := "record", "excluded"
 	instrument := "record.instrument"
@@ -155,62 +153,37 @@ func (t *Tx) PutRecord(ctx context.Context, r Record, override bool) (int64, err
 			station_id = coalesce(%[1]s.station_id, %[2]s.station_id),
 			instrument = %[3]s,
 			siting = CASE WHEN %[1]s.siting = 'unknown' THEN %[2]s.siting ELSE %[1]s.siting END,
-			start_at = coalesce(record.start_at, excluded.start_at),
-			distance_km = coalesce(%[1]s.distance_km, %[2]s.distance_km)
-		RETURNING id`, first, second, instrument)
-	var id int64
-	err = t.tx.QueryRowContext(ctx, query, r.Code, eventID, stationID, r.Instrument, r.Siting, timeText(r.Start), r.DistanceKM).Scan(&id)
+			start_at = coalesce(record.start_at, excluded.start_at)
+		RETURNING id, coalesce(event_id, 0), coalesce(station_id, 0)`, first, second, instrument)
+	var k RecordKey
+	err = t.tx.QueryRowContext(ctx, query, r.Code, eventID, stationID, r.Instrument, r.Siting, timeText(r.Start), r.Distances.BestKM).
+		Scan(&k.ID, &k.EventID, &k.StationID)
 	if err != nil {
-		return 0, fmt.Errorf("store record %s: %w", r.Code, err)
+		return RecordKey{}, fmt.Errorf("store record %s: %w", r.Code, err)
 	}
-	return id, nil
+	return k, nil
 }
 
-func (t *Tx) putParents(ctx context.Context, r Record, override bool) (eventID, stationID *int64, err error) {
+// RecordKey is a record's identity in the store, with its event's and station's;
+// 0 where it has none.
+type RecordKey struct{ ID, EventID, StationID int64 }
+
+func (t *Tx) putParents(ctx context.Context, r Record) (eventID, stationID *int64, err error) {
 	if r.Event != nil {
-		id, err := t.PutEvent(ctx, *r.Event, override)
+		id, err := t.PutEvent(ctx, *r.Event)
 		if err != nil {
 			return nil, nil, err
 		}
 		eventID = &id
 	}
 	if r.Station != nil {
-		id, err := t.PutStation(ctx, *r.Station, override)
+		id, err := t.PutStation(ctx, *r.Station)
 		if err != nil {
 			return nil, nil, err
 		}
 		stationID = &id
 	}
 	return eventID, stationID, nil
-}
-
-// upsert builds INSERT … ON CONFLICT … RETURNING id for a table whose optional
-// columns are filled in, or overridden. Names are constants of this package.
-func upsert(table string, key, optional []string, override bool) string {
-	var columns, marks, sets string
-	for i, c := range append(append([]string{}, key...), optional...) {
-		if i > 0 {
-			columns += ", "
-			marks += ", "
-		}
-		columns += c
-		marks += "?"
-	}
-	for i, c := range optional {
-		first, second := table, "excluded"
-		if override {
-			first, second = second, first
-		}
-		if i > 0 {
-			sets += ", "
-		}
-		sets += fmt.Sprintf("%s = coalesce(%s.%s, %s.%s)", c, first, c, second, c)
-	}
-	conflict := key[0]
-	for _, c := range key[1:] {
-		conflict += ", " + c
-	}
-	return fmt.Sprintf("INSERT INTO %s (%s) VALUES (%s) ON CONFLICT (%s) DO UPDATE SET %s RETURNING id", table, columns, marks, conflict, sets)
 }
 
 // AddRotated stores what was computed of a record's horizontals over all

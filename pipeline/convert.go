@@ -7,7 +7,7 @@ import (
 
 // recordOf describes the record that a channel belongs to.
 func recordOf(c ingest.Channel, code string) db.Record {
-	r := db.Record{Code: code, Instrument: c.Instrument, Siting: string(c.Siting), Start: c.Start, DistanceKM: pointer(c.DistanceKM)}
+	r := db.Record{Code: code, Instrument: c.Instrument, Siting: string(c.Siting), Start: c.Start, Distances: db.Distances{BestKM: pointer(c.DistanceKM)}}
 	if r.Siting == "" {
 		r.Siting = string(ingest.SitingUnknown)
 	}
@@ -22,7 +22,7 @@ func recordOf(c ingest.Channel, code string) db.Record {
 		s := c.Station
 		r.Station = &db.Station{
 			Network: s.Network, Code: ingest.StationCode(&c), Name: s.Name, LatitudeDeg: pointer(s.Latitude), LongitudeDeg: pointer(s.Longitude),
-			ElevationM: pointer(s.ElevationM), Vs30MPS: pointer(s.Vs30),
+			ElevationM: pointer(s.ElevationM), Vs30MPS: pointer(s.Vs30), SiteClass: s.SiteClass,
 		}
 	}
 	return r
@@ -32,19 +32,19 @@ func recordOf(c ingest.Channel, code string) db.Record {
 func channelOf(h db.HeldComponent) ingest.Channel {
 	c := ingest.Channel{
 		Instrument: h.Record.Instrument, ChannelCode: h.Channel, Siting: ingest.Siting(h.Record.Siting),
-		Orientation: orientationOf(h.Component), Start: h.Record.Start, StepS: h.StepS, DistanceKM: number(h.Record.DistanceKM),
+		Orientation: orientationOf(h.Component), Start: h.Record.Start, StepS: h.StepS,
 		Unit: h.Unit, Processing: ingest.Processing(h.Processing), LowCutHz: number(h.LowCutHz), HighCutHz: number(h.HighCutHz),
 	}
 	if e := h.Record.Event; e != nil {
 		c.Event = ingest.Event{
-			ID: e.Code, Name: e.Name, Origin: e.Origin, Latitude: number(e.LatitudeDeg), Longitude: number(e.LongitudeDeg),
+			ID: e.OwnCode, Name: e.Name, Origin: e.Origin, Latitude: number(e.LatitudeDeg), Longitude: number(e.LongitudeDeg),
 			DepthKM: number(e.DepthKM), Magnitude: number(e.Magnitude), MagnitudeType: e.MagnitudeType,
 		}
 	}
 	if s := h.Record.Station; s != nil {
 		c.Station = ingest.Station{
 			Network: s.Network, Code: s.Code, Name: s.Name, Latitude: number(s.LatitudeDeg), Longitude: number(s.LongitudeDeg),
-			ElevationM: number(s.ElevationM), Vs30: number(s.Vs30MPS),
+			ElevationM: number(s.ElevationM), Vs30: number(s.Vs30MPS), SiteClass: s.SiteClass,
 		}
 	}
 	return c

@@ -25,7 +25,7 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result) (warni
 		c := channelOf(held)
 		stated, matched := w.opts.Catalogue.Apply(res.rel, &c)
 		if matched {
-			if err := redescribe(ctx, tx, held, c.Orientation, stated); err != nil {
+			if err := w.redescribe(ctx, tx, held, c.Orientation, stated); err != nil {
 				return nil, err
 			}
 		}
@@ -35,8 +35,12 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result) (warni
 }
 
 // redescribe stores what the catalogue states of a held component.
-func redescribe(ctx context.Context, tx *db.Tx, held db.HeldComponent, o ingest.Orientation, stated ingest.Channel) error {
-	if _, err := tx.PutRecord(ctx, recordOf(stated, held.Record.Code), true); err != nil {
+func (w *writer) redescribe(ctx context.Context, tx *db.Tx, held db.HeldComponent, o ingest.Orientation, stated ingest.Channel) error {
+	record, err := tx.PutRecord(ctx, recordOf(stated, held.Record.Code), true)
+	if err != nil {
+		return err
+	}
+	if err := w.settler.state(ctx, record, []account{catalogueAccount(stated)}); err != nil {
 		return err
 	}
 	stated.Orientation = o

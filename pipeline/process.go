@@ -38,13 +38,14 @@ type result struct {
 
 // solved is one channel with what was computed of it.
 type solved struct {
-	channel ingest.Channel // without samples
-	stated  ingest.Channel // what the catalogue says of it, and nothing else
-	matched bool           // whether the catalogue says anything
-	samples int
-	data    []byte // compressed samples
-	digest  string
-	spectra db.Spectra
+	channel  ingest.Channel // without samples
+	stated   ingest.Channel // what the catalogue says of it, and nothing else
+	matched  bool           // whether the catalogue says anything
+	accounts []account      // what everybody says of its event, station and record
+	samples  int
+	data     []byte // compressed samples
+	digest   string
+	spectra  db.Spectra
 }
 
 // reader turns files into results. It is shared by the workers.
@@ -136,9 +137,14 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	}
 	res.outcome = Stored
 	for i := range channels {
+		header := withoutSamples(channels[i])
 		stated, matched := r.describe(file, res.stem, &channels[i])
 		s, err := r.solve(channels[i])
 		s.stated, s.matched = stated, matched
+		s.accounts = []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: header}}
+		if matched {
+			s.accounts = append(s.accounts, catalogueAccount(stated))
+		}
 		if err != nil {
 			return res.rejected(&ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
 		}
@@ -166,10 +172,19 @@ func (r *reader) solve(c ingest.Channel) (solved, error) {
 	}
 	var peaks spectrum.GroundPeaks
 	peaks.PGA, peaks.PGV, peaks.PGD = spectrum.Peaks(c.StepS, c.Acceleration)
-	s := solved{channel: c, samples: len(c.Acceleration), spectra: r.solvers.spectra(solver.SD(nil, c.Acceleration), peaks)}
+	s := solved{channel: withoutSamples(c), samples: len(c.Acceleration), spectra: r.solvers.spectra(solver.SD(nil, c.Acceleration), peaks)}
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
-	s.channel.Acceleration = nil
 	return s, nil
+}
+
+// catalogueAccount is what the catalogue says of a channel.
+func catalogueAccount(stated ingest.Channel) account {
+	return account{by: db.ByCatalogue, source: "catalogue", channel: stated}
+}
+
+func withoutSamples(c ingest.Channel) ingest.Channel {
+	c.Acceleration = nil
+	return c
 }
 
 func (res result) skipped(reason string) result {

@@ -364,7 +364,7 @@ func TestTheCatalogueDescribesHeldRecords(t *testing.T) {
 			continue
 		}
 		found++
-		if c.Record.DistanceKM == nil || *c.Record.DistanceKM != 17.5 || c.Record.Event.Magnitude == nil || *c.Record.Event.Magnitude != 6.2 ||
+		if c.Record.Distances.BestKM == nil || *c.Record.Distances.BestKM != 17.5 || c.Record.Event.Magnitude == nil || *c.Record.Event.Magnitude != 6.2 ||
 			c.Record.Siting != "structure" || c.Record.Instrument != "Roof" || c.LowCutHz == nil || *c.LowCutHz != 0.3 || *c.Record.Station.Vs30MPS != 350 {
 			t.Errorf("record = %+v, event %+v", c.Record, c.Record.Event)
 		}

@@ -18,10 +18,12 @@ type writer struct {
 	total   int
 	done    int
 	summary Summary
+	settler *settler              // of the batch in hand
+	known   map[db.Statement]bool // what settlers know to be stated
 }
 
 func newWriter(store Store, run state, opts Options, total int) *writer {
-	return &writer{store: store, run: run, opts: opts, total: total}
+	return &writer{store: store, run: run, opts: opts, total: total, known: map[db.Statement]bool{}}
 }
 
 // files brings the files to the store.
@@ -37,13 +39,14 @@ func (w *writer) files(ctx context.Context, files []ingest.Found) error {
 func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 	reports := make([]FileReport, len(batch))
 	err := w.store.Update(ctx, func(tx *db.Tx) error {
+		w.settler = newSettler(tx, w.known)
 		for i, res := range batch {
 			var err error
 			if reports[i], err = w.storeFile(ctx, tx, res); err != nil {
 				return err
 			}
 		}
-		return nil
+		return w.settler.settle(ctx)
 	})
 	if err != nil {
 		return err
@@ -145,21 +148,22 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 }
 
 func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, s solved, p placement, sourceID int64) error {
-	recordID, err := tx.PutRecord(ctx, recordOf(s.channel, p.code), false)
+	record, err := tx.PutRecord(ctx, recordOf(s.channel, p.code), false)
+	if err == nil && s.matched {
+		record, err = tx.PutRecord(ctx, recordOf(s.stated, p.code), true)
+	}
 	if err != nil {
 		return err
 	}
-	if s.matched {
-		if _, err := tx.PutRecord(ctx, recordOf(s.stated, p.code), true); err != nil {
-			return err
-		}
+	if err := w.settler.state(ctx, record, s.accounts); err != nil {
+		return err
 	}
-	if err := tx.SetRoles(ctx, recordID, p.renamed); err != nil {
+	if err := tx.SetRoles(ctx, record.ID, p.renamed); err != nil {
 		return err
 	}
 	c := componentOf(s, p.role)
 	c.SourceID = sourceID
-	return tx.AddComponent(ctx, recordID, c, s.data, s.digest, w.run.generation.ID, s.spectra)
+	return tx.AddComponent(ctx, record.ID, c, s.data, s.digest, w.run.generation.ID, s.spectra)
 }
 
 // reject stores one cause against the file.

@@ -14,6 +14,10 @@ import (
 type attributes struct {
 	Magnitude        float64 `expr:"magnitude"`
 	DistanceKM       float64 `expr:"distance_km"`
+	EpicentralKM     float64 `expr:"epicentral_km"`
+	HypocentralKM    float64 `expr:"hypocentral_km"`
+	RuptureKM        float64 `expr:"rupture_km"`
+	JoynerBooreKM    float64 `expr:"jb_km"`
 	Vs30MPS          float64 `expr:"vs30_m_s"`
 	DepthKM          float64 `expr:"depth_km"`
 	EventLatitude    float64 `expr:"event_latitude"`
@@ -57,6 +61,10 @@ var numbers = []struct {
 }{
 	{"magnitude", func(a *attributes) bool { return isKnown(a.Magnitude) }},
 	{"distance_km", func(a *attributes) bool { return isKnown(a.DistanceKM) }},
+	{"epicentral_km", func(a *attributes) bool { return isKnown(a.EpicentralKM) }},
+	{"hypocentral_km", func(a *attributes) bool { return isKnown(a.HypocentralKM) }},
+	{"rupture_km", func(a *attributes) bool { return isKnown(a.RuptureKM) }},
+	{"jb_km", func(a *attributes) bool { return isKnown(a.JoynerBooreKM) }},
 	{"vs30_m_s", func(a *attributes) bool { return isKnown(a.Vs30MPS) }},
 	{"depth_km", func(a *attributes) bool { return isKnown(a.DepthKM) }},
 	{"event_latitude", func(a *attributes) bool { return isKnown(a.EventLatitude) }},
@@ -84,7 +92,8 @@ var texts = []string{
 // attributeDetails says what has to be read of components for an attribute;
 // those that are not named are there always.
 var attributeDetails = map[string]db.Details{
-	"distance_km": db.DetailRecord, "vs30_m_s": db.DetailRecord, "station_latitude": db.DetailRecord, "station_longitude": db.DetailRecord,
+	"distance_km": db.DetailRecord, "epicentral_km": db.DetailRecord, "hypocentral_km": db.DetailRecord, "rupture_km": db.DetailRecord, "jb_km": db.DetailRecord,
+	"vs30_m_s": db.DetailRecord, "station_latitude": db.DetailRecord, "station_longitude": db.DetailRecord,
 	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "instrument": db.DetailRecord,
 	"dt_s": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
 	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
@@ -120,7 +129,10 @@ func duration(c *db.HeldComponent) float64 { return float64(c.Samples-1) * c.Ste
 
 func describeRecord(a *attributes, r *db.Record) {
 	a.Record, a.Siting, a.Instrument = r.Code, r.Siting, r.Instrument
-	a.DistanceKM, a.Year = orNaN(r.DistanceKM), year(r)
+	a.Year = year(r)
+	d := &r.Distances
+	a.DistanceKM, a.EpicentralKM, a.HypocentralKM = orNaN(d.BestKM), orNaN(d.EpicentralKM), orNaN(d.HypocentralKM)
+	a.RuptureKM, a.JoynerBooreKM = orNaN(d.RuptureKM), orNaN(d.JoynerBooreKM)
 	event, station := r.Event, r.Station
 	if event == nil {
 		event = &db.Event{}

@@ -27,16 +27,16 @@ func benchStore(b *testing.B, components, samples int) *db.Store {
 		}
 		for i := range components / 2 {
 			event := &db.Event{Code: fmt.Sprintf("Q%d", i%12), Magnitude: ptr(5 + float64(i%20)/10)}
-			record, err := tx.PutRecord(ctx, db.Record{Code: fmt.Sprintf("R%05d", i), Siting: "ground", Event: event, DistanceKM: ptr(float64(i % 100))}, false)
+			record, err := tx.PutRecord(ctx, db.Record{Code: fmt.Sprintf("R%05d", i), Siting: "ground", Event: event, Distances: db.Distances{BestKM: ptr(float64(i % 100))}}, false)
 			if err != nil {
 				return err
 			}
 			for _, role := range []string{db.RoleH1, db.RoleH2} {
-				if err := putRandom(ctx, tx, rng, record, role, samples, g); err != nil {
+				if err := putRandom(ctx, tx, rng, record.ID, role, samples, g); err != nil {
 					return err
 				}
 			}
-			if err := tx.AddRotated(ctx, record, g.ID, randomSpectra(rng, g.Grid), randomSpectra(rng, g.Grid)); err != nil {
+			if err := tx.AddRotated(ctx, record.ID, g.ID, randomSpectra(rng, g.Grid), randomSpectra(rng, g.Grid)); err != nil {
 				return err
 			}
 		}

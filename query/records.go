@@ -31,7 +31,11 @@ type RecordRow struct {
 	StationLatitude  *float64 `json:"station_latitude"`
 	StationLongitude *float64 `json:"station_longitude"`
 	Vs30MPS          *float64 `json:"vs30_m_s"`
-	DistanceKM       *float64 `json:"distance_km"`
+	DistanceKM       *float64 `json:"distance_km"` // the best of the following, see db.Distances
+	EpicentralKM     *float64 `json:"epicentral_km"`
+	HypocentralKM    *float64 `json:"hypocentral_km"`
+	RuptureKM        *float64 `json:"rupture_km"`
+	JoynerBooreKM    *float64 `json:"jb_km"`
 	Instrument       *string  `json:"instrument"`
 	Siting           string   `json:"siting"`
 	Component        string   `json:"component"`
@@ -127,6 +131,7 @@ func recordRow(c *db.HeldComponent) RecordRow {
 	if station == nil {
 		station = &db.Station{}
 	}
+	d := &c.Record.Distances
 	return RecordRow{
 		Record: c.Record.Code,
 		Event:  orNull(event.Code), EventName: orNull(event.Name), Origin: timeOrNull(event.Origin),
@@ -134,7 +139,8 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		EventLatitude: event.LatitudeDeg, EventLongitude: event.LongitudeDeg,
 		Network: orNull(station.Network), Station: orNull(station.Code), StationName: orNull(station.Name),
 		StationLatitude: station.LatitudeDeg, StationLongitude: station.LongitudeDeg, Vs30MPS: station.Vs30MPS,
-		DistanceKM: c.Record.DistanceKM, Instrument: orNull(c.Record.Instrument), Siting: c.Record.Siting,
+		DistanceKM: d.BestKM, EpicentralKM: d.EpicentralKM, HypocentralKM: d.HypocentralKM, RuptureKM: d.RuptureKM, JoynerBooreKM: d.JoynerBooreKM,
+		Instrument: orNull(c.Record.Instrument), Siting: c.Record.Siting,
 		Component: c.Role, Channel: orNull(c.Channel), AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(startOf(c)),
 		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
 		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,

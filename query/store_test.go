@@ -125,14 +125,14 @@ func alter(t *testing.T, store *db.Store, statement string, args ...any) {
 }
 
 func (r inventedRecord) put(ctx context.Context, tx *db.Tx, run int64, g db.Generation) error {
-	id, err := tx.PutRecord(ctx, db.Record{
-		Code: r.code, Siting: r.siting, Event: r.event, Station: r.station, DistanceKM: r.distanceKM, Start: r.start,
+	record, err := tx.PutRecord(ctx, db.Record{
+		Code: r.code, Siting: r.siting, Event: r.event, Station: r.station, Distances: db.Distances{BestKM: r.distanceKM}, Start: r.start,
 	}, false)
 	if err != nil {
 		return err
 	}
 	for _, c := range r.components {
-		if err := c.put(ctx, tx, run, id, r.code, g); err != nil {
+		if err := c.put(ctx, tx, run, record.ID, r.code, g); err != nil {
 			return err
 		}
 	}
@@ -146,7 +146,7 @@ func (r inventedRecord) put(ctx context.Context, tx *db.Tx, run int64, g db.Gene
 		return nil
 	}
 	median, maximum := inventedComponent{level: math.Sqrt(a * b)}, inventedComponent{level: 1.25 * max(a, b)}
-	return tx.AddRotated(ctx, id, g.ID, median.spectra(g.Grid), maximum.spectra(g.Grid))
+	return tx.AddRotated(ctx, record.ID, g.ID, median.spectra(g.Grid), maximum.spectra(g.Grid))
 }
 
 func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64, code string, g db.Generation) error {

@@ -13,7 +13,7 @@ import (
 
 func whereSample() attributes {
 	held := &db.HeldComponent{
-		Record: &db.Record{Code: "R1", Siting: "free-field", Event: quakeA, Station: stationA, DistanceKM: ptr(12.5)},
+		Record: &db.Record{Code: "R1", Siting: "free-field", Event: quakeA, Station: stationA, Distances: db.Distances{BestKM: ptr(12.5)}},
 		Peaks:  db.Peaks{PGA: 0.3 * StandardGravity, PGV: 0.2, PGD: 0.1},
 	}
 	held.Role, held.StepS, held.Samples, held.LowCutHz = "h1", 0.01, 4001, ptr(0.1)

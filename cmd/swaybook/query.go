@@ -181,9 +181,10 @@ func runDemand(ctx context.Context, store *db.Store, o demandOptions, w io.Write
 func queryRecordsCommand() *cli.Command {
 	return &cli.Command{
 		Name:  "records",
-		Usage: "what is held, or what was rejected and why",
+		Usage: "what is held, what was rejected and why, or what sources disagree about",
 		Flags: append(selectionFlags("recorded, all (pairs stored over all directions too), each, h1, h2, v, rotd50 or rotd100 (default: recorded)", "as for query spectrum (default: all)"),
 			&cli.BoolFlag{Name: "rejected", DisableDefaultText: true, Usage: "list what could not be stored, and why"},
+			&cli.BoolFlag{Name: "conflicts", DisableDefaultText: true, Usage: "list what catalogue, metadata and headers state otherwise than what is taken"},
 			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
@@ -200,23 +201,41 @@ func queryRecordsCommand() *cli.Command {
 
 type recordsOptions struct {
 	question query.RecordsQuestion
-	rejected bool
+	list     func(context.Context, *db.Store) (writer, error) // instead of the records
 	format   query.Format
 }
 
 func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
-	o.rejected = c.Bool("rejected")
-	if o.rejected && (c.IsSet("where") || c.IsSet("component") || c.IsSet("siting")) {
-		return o, usagef("--rejected lists files, which have no attributes to select by")
+	for _, flag := range []string{"rejected", "conflicts"} {
+		switch {
+		case !c.Bool(flag):
+			continue
+		case c.IsSet("where") || c.IsSet("component") || c.IsSet("siting"):
+			return o, usagef("--%s lists no components, and nothing that has attributes to select by", flag)
+		case o.list != nil:
+			return o, usagef("--rejected and --conflicts are two lists: ask for one")
+		}
+		o.list = otherLists[flag]
 	}
 	o.question.Selection, err = newSelection(c, query.ParseStoredComponent, query.ParseStoredSiting)
 	return o, errors.Join(err, noArguments(c),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }))
 }
 
+// writer is an answer that can be written.
+type writer interface {
+	Write(io.Writer, query.Format) error
+}
+
+// otherLists are what query records lists instead of records, by flag.
+var otherLists = map[string]func(context.Context, *db.Store) (writer, error){
+	"rejected":  func(ctx context.Context, s *db.Store) (writer, error) { return query.Rejections(ctx, s) },
+	"conflicts": func(ctx context.Context, s *db.Store) (writer, error) { return query.Conflicts(ctx, s) },
+}
+
 func runRecords(ctx context.Context, store *db.Store, o recordsOptions, w, stderr io.Writer) error {
-	if o.rejected {
-		answer, err := query.Rejections(ctx, store)
+	if o.list != nil {
+		answer, err := o.list(ctx, store)
 		if err != nil {
 			return err
 		}

@@ -1,0 +1,195 @@
+package pipeline
+
+import (
+	"context"
+	"maps"
+	"slices"
+
+	"swaybook/db"
+)
+
+// settler keeps what is stated and brings what is taken of it up to date, within
+// one transaction. What it takes depends on the statements alone, not on the order
+// in which they came.
+type settler struct {
+	tx      *db.Tx
+	known   map[db.Statement]bool // stated before, source left out
+	touched map[db.Subject]bool
+}
+
+func newSettler(tx *db.Tx, known map[db.Statement]bool) *settler {
+	return &settler{tx: tx, known: known, touched: map[db.Subject]bool{}}
+}
+
+// state keeps what the accounts say of a record, its event and its station.
+func (s *settler) state(ctx context.Context, k db.RecordKey, accounts []account) error {
+	for _, a := range accounts {
+		for _, st := range a.statements(k) {
+			if err := s.stateOne(ctx, st); err != nil {
+				return err
+			}
+		}
+	}
+	s.touched[db.Subject{Kind: db.SubjectRecord, ID: k.ID}] = true
+	return nil
+}
+
+// stateOne keeps one statement. Most files of an event or a station repeat what
+// the first one said; files come in order of path, so that its source stays.
+func (s *settler) stateOne(ctx context.Context, st db.Statement) error {
+	key := st
+	key.Source = ""
+	shared := st.Kind != db.SubjectRecord
+	if shared && s.known[key] {
+		return nil
+	}
+	isNew, err := s.tx.State(ctx, st)
+	if err != nil {
+		return err
+	}
+	if shared {
+		s.known[key] = true
+	}
+	if isNew {
+		s.touched[st.Subject] = true
+	}
+	return nil
+}
+
+// settle brings events, then stations, then records up to date.
+func (s *settler) settle(ctx context.Context) error {
+	steps := []struct {
+		kind string
+		do   func(context.Context, int64) error
+	}{{db.SubjectEvent, s.event}, {db.SubjectStation, s.station}, {db.SubjectRecord, s.record}}
+	for _, step := range steps {
+		for _, subject := range s.ofKind(step.kind) {
+			if err := step.do(ctx, subject.ID); err != nil {
+				return err
+			}
+		}
+	}
+	return nil
+}
+
+func (s *settler) ofKind(kind string) []db.Subject {
+	return slices.DeleteFunc(slices.Collect(maps.Keys(s.touched)), func(t db.Subject) bool { return t.Kind != kind })
+}
+
+// event settles the event and all that may be the same earthquake.
+func (s *settler) event(ctx context.Context, id int64) error {
+	events, statements, err := s.neighbours(ctx, id)
+	if err != nil {
+		return err
+	}
+	stands := associate(events)
+	for i := range events {
+		var all []db.Statement
+		for j := range events {
+			if stands[j] == stands[i] {
+				all = append(all, statements[j]...)
+			}
+		}
+		db.SortStatements(all)
+		changed, err := s.tx.SetEvent(ctx, events[i].ID, events[stands[i]].ID, takenOf(all).event())
+		if err != nil {
+			return err
+		}
+		if err := s.touchRecords(ctx, db.Subject{Kind: db.SubjectEvent, ID: events[i].ID}, changed); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// neighbours returns the event, those that share an identifier with it or stood for one another
+// with it, and those whose origin times are within the tolerance of one another,
+// each by its own statements.
+func (s *settler) neighbours(ctx context.Context, id int64) (events []statedEvent, statements [][]db.Statement, err error) {
+	seen := map[int64]bool{}
+	add := func(keys []db.EventKey, err error) error {
+		for _, k := range keys {
+			if err != nil || seen[k.ID] {
+				continue
+			}
+			seen[k.ID] = true
+			var own []db.Statement
+			if own, err = s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: k.ID}); err == nil {
+				events, statements = append(events, stated(k, own)), append(statements, own)
+			}
+		}
+		return err
+	}
+	if err := add(s.tx.EventsAlike(ctx, id)); err != nil {
+		return nil, nil, err
+	}
+	for i := 0; i < len(events); i++ { // add appends
+		if at := events[i].Origin; !at.IsZero() {
+			if err := add(s.tx.EventsWithin(ctx, at.Add(-originTolerance), at.Add(originTolerance))); err != nil {
+				return nil, nil, err
+			}
+		}
+		if err := add(s.tx.EventsAlike(ctx, events[i].ID)); err != nil {
+			return nil, nil, err
+		}
+	}
+	return events, statements, nil
+}
+
+// stated is an event by its own statements.
+func stated(k db.EventKey, own []db.Statement) statedEvent {
+	e := statedEvent{EventKey: k, Event: takenOf(own).event()}
+	for _, st := range own {
+		if st.Attribute == db.AttributeIdentifier {
+			e.identifiers = append(e.identifiers, st.Value)
+		}
+	}
+	return e
+}
+
+func (s *settler) station(ctx context.Context, id int64) error {
+	subject := db.Subject{Kind: db.SubjectStation, ID: id}
+	statements, err := s.tx.Statements(ctx, subject)
+	if err != nil {
+		return err
+	}
+	changed, err := s.tx.SetStation(ctx, id, takenOf(statements).station())
+	if err != nil {
+		return err
+	}
+	return s.touchRecords(ctx, subject, changed)
+}
+
+// touchRecords marks the records of a subject that changed.
+func (s *settler) touchRecords(ctx context.Context, of db.Subject, changed bool) error {
+	if !changed {
+		return nil
+	}
+	places, err := s.tx.Places(ctx, of)
+	for _, p := range places {
+		s.touched[db.Subject{Kind: db.SubjectRecord, ID: p.RecordID}] = true
+	}
+	return err
+}
+
+// record computes the distances that follow from coordinates, and takes the best.
+func (s *settler) record(ctx context.Context, id int64) error {
+	subject := db.Subject{Kind: db.SubjectRecord, ID: id}
+	places, err := s.tx.Places(ctx, subject)
+	if err != nil {
+		return err
+	}
+	for _, p := range places {
+		for _, st := range computedDistances(p) {
+			st.Subject, st.By, st.Source = subject, db.ByComputed, "coordinates"
+			if _, err := s.tx.State(ctx, st); err != nil {
+				return err
+			}
+		}
+	}
+	statements, err := s.tx.Statements(ctx, subject)
+	if err != nil {
+		return err
+	}
+	return s.tx.SetDistances(ctx, id, distancesOf(statements))
+}
