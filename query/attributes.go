@@ -5,6 +5,7 @@ import (
 	"strings"
 
 	"swaybook/db"
+	"swaybook/pipeline/siteclass"
 	"swaybook/query/stats"
 )
 
@@ -48,6 +49,9 @@ type attributes struct {
 	Format        string `expr:"format"`
 	Processing    string `expr:"processing"`
 	Source        string `expr:"source"`
+
+	SiteClassEN1998 string `expr:"site_class_en1998"`
+	SiteClassNEHRP  string `expr:"site_class_nehrp"`
 }
 
 // noYear is the year of a record that knows no time.
@@ -86,7 +90,7 @@ var numbers = []struct {
 // texts lists the attributes that are strings.
 var texts = []string{
 	"record", "event", "event_name", "magnitude_type", "station", "network", "station_name",
-	"siting", "instrument", "component", "format", "processing", "source",
+	"siting", "site_class_en1998", "site_class_nehrp", "instrument", "component", "format", "processing", "source",
 }
 
 // attributeDetails says what has to be read of components for an attribute;
@@ -94,7 +98,7 @@ var texts = []string{
 var attributeDetails = map[string]db.Details{
 	"distance_km": db.DetailRecord, "epicentral_km": db.DetailRecord, "hypocentral_km": db.DetailRecord, "rupture_km": db.DetailRecord, "jb_km": db.DetailRecord,
 	"vs30_m_s": db.DetailRecord, "station_latitude": db.DetailRecord, "station_longitude": db.DetailRecord,
-	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "instrument": db.DetailRecord,
+	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "site_class_en1998": db.DetailRecord, "site_class_nehrp": db.DetailRecord, "instrument": db.DetailRecord,
 	"dt_s": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
 	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
 	"low_cut_hz": db.DetailChannel, "high_cut_hz": db.DetailChannel,
@@ -145,7 +149,23 @@ func describeRecord(a *attributes, r *db.Record) {
 	a.EventLatitude, a.EventLongitude = orNaN(event.LatitudeDeg), orNaN(event.LongitudeDeg)
 	a.Station, a.Network, a.StationName = station.Code, station.Network, station.Name
 	a.Vs30MPS = orNaN(station.Vs30MPS)
+	a.SiteClassEN1998, a.SiteClassNEHRP = siteClasses(station)
 	a.StationLatitude, a.StationLongitude = orNaN(station.LatitudeDeg), orNaN(station.LongitudeDeg)
+}
+
+// siteClasses are the ground type after EN 1998-1 and the site class after NEHRP
+// by Vs30, "" where it is unknown; a ground type that somebody states stands where
+// Vs30 does not say.
+func siteClasses(s *db.Station) (en1998, nehrp string) {
+	if s.Vs30MPS == nil {
+		return s.SiteClass, ""
+	}
+	ground, err := siteclass.EN1998(*s.Vs30MPS)
+	site, errSite := siteclass.NEHRP(*s.Vs30MPS)
+	if err != nil || errSite != nil {
+		return s.SiteClass, ""
+	}
+	return string(ground), string(site)
 }
 
 // year is that of the origin, UTC, or of the record's start where the origin is

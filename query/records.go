@@ -31,6 +31,8 @@ type RecordRow struct {
 	StationLatitude  *float64 `json:"station_latitude"`
 	StationLongitude *float64 `json:"station_longitude"`
 	Vs30MPS          *float64 `json:"vs30_m_s"`
+	SiteClassEN1998  *string  `json:"site_class_en1998"`
+	SiteClassNEHRP   *string  `json:"site_class_nehrp"`
 	DistanceKM       *float64 `json:"distance_km"` // the best of the following, see db.Distances
 	EpicentralKM     *float64 `json:"epicentral_km"`
 	HypocentralKM    *float64 `json:"hypocentral_km"`
@@ -132,6 +134,7 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		station = &db.Station{}
 	}
 	d := &c.Record.Distances
+	en1998, nehrp := siteClasses(station)
 	return RecordRow{
 		Record: c.Record.Code,
 		Event:  orNull(event.Code), EventName: orNull(event.Name), Origin: timeOrNull(event.Origin),
@@ -139,6 +142,7 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		EventLatitude: event.LatitudeDeg, EventLongitude: event.LongitudeDeg,
 		Network: orNull(station.Network), Station: orNull(station.Code), StationName: orNull(station.Name),
 		StationLatitude: station.LatitudeDeg, StationLongitude: station.LongitudeDeg, Vs30MPS: station.Vs30MPS,
+		SiteClassEN1998: orNull(en1998), SiteClassNEHRP: orNull(nehrp),
 		DistanceKM: d.BestKM, EpicentralKM: d.EpicentralKM, HypocentralKM: d.HypocentralKM, RuptureKM: d.RuptureKM, JoynerBooreKM: d.JoynerBooreKM,
 		Instrument: orNull(c.Record.Instrument), Siting: c.Record.Siting,
 		Component: c.Role, Channel: orNull(c.Channel), AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(startOf(c)),

@@ -55,7 +55,7 @@ func (a *RecordsAnswer) table() []byte {
 // recordsHeader names the columns as the fields of JSON are named.
 var recordsHeader = []string{
 	"record", "event", "event_name", "origin", "magnitude", "magnitude_type", "depth_km", "event_latitude", "event_longitude",
-	"network", "station", "station_name", "station_latitude", "station_longitude", "vs30_m_s",
+	"network", "station", "station_name", "station_latitude", "station_longitude", "vs30_m_s", "site_class_en1998", "site_class_nehrp",
 	"distance_km", "epicentral_km", "hypocentral_km", "rupture_km", "jb_km",
 	"instrument", "siting", "component", "channel", "azimuth_deg", "start", "dt_s", "samples", "duration_s",
 	"pga_g", "pgv_m_s", "pgd_m", "unit", "processing", "low_cut_hz", "high_cut_hz", "format", "source", "line", "sha256", "warnings",
@@ -81,7 +81,11 @@ func (r *RecordRow) csv(l *csvLine) {
 	l.number(orNaN(r.EventLatitude))
 	l.number(orNaN(r.EventLongitude))
 	l.words(orEmpty(r.Network), orEmpty(r.Station), orEmpty(r.StationName))
-	for _, x := range []*float64{r.StationLatitude, r.StationLongitude, r.Vs30MPS, r.DistanceKM, r.EpicentralKM, r.HypocentralKM, r.RuptureKM, r.JoynerBooreKM} {
+	for _, x := range []*float64{r.StationLatitude, r.StationLongitude, r.Vs30MPS} {
+		l.number(orNaN(x))
+	}
+	l.words(orEmpty(r.SiteClassEN1998), orEmpty(r.SiteClassNEHRP))
+	for _, x := range []*float64{r.DistanceKM, r.EpicentralKM, r.HypocentralKM, r.RuptureKM, r.JoynerBooreKM} {
 		l.number(orNaN(x))
 	}
 	l.words(orEmpty(r.Instrument), r.Siting, r.Component, orEmpty(r.Channel))
