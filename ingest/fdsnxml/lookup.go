@@ -1,0 +1,109 @@
+package fdsnxml
+
+import (
+	"errors"
+	"fmt"
+	"reflect"
+	"slices"
+	"strings"
+	"time"
+)
+
+// ErrUnknown is the cause where no epoch of a channel is known at all.
+var ErrUnknown = errors.New("no such channel in the station metadata")
+
+// maxEpochs is how many epochs an error lists.
+const maxEpochs = 6
+
+// Lookup returns the one epoch of a channel that covers the times from one to
+// the other. Where none or more than one does, the error lists the epochs that
+// there are; ErrUnknown where there are none.
+func (v *Inventory) Lookup(network, station, location_, code string, from, to time.Time) (*Channel, error) {
+	var epochs, fit []*Channel
+	for i := range v.Channels {
+		c := &v.Channels[i]
+		if c.Station != station || c.Network != network || c.Location != location(location_) || c.Code != code {
+			continue
+		}
+		epochs = append(epochs, c)
+		if covers(c.Start, c.End, from, to) {
+			fit = append(fit, c)
+		}
+	}
+	switch {
+	case len(fit) == 1:
+		return fit[0], nil
+	case len(epochs) == 0:
+		return nil, ErrUnknown
+	case len(fit) > 1:
+		return nil, fmt.Errorf("more than one epoch covers %s: %s", stamp(from), list(fit))
+	}
+	for _, c := range epochs {
+		if covers(c.Start, c.End, from, from) {
+			return nil, fmt.Errorf("the epoch changes between %s and %s: %s", stamp(from), stamp(to), list(epochs))
+		}
+	}
+	return nil, fmt.Errorf("no epoch covers %s: %s", stamp(from), list(epochs))
+}
+
+// Site returns the epoch of a station that covers the time, or any where the
+// time is zero. Where the epochs that fit are at different places, there is none.
+func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool) {
+	for _, other := range v.Stations {
+		if other.Network != network || other.Code != code || !at.IsZero() && !covers(other.Start, other.End, at, at) {
+			continue
+		}
+		if ok && (s.Latitude != other.Latitude || s.Longitude != other.Longitude || s.ElevationM != other.ElevationM) {
+			return Station{}, false
+		}
+		s, ok = other, true
+	}
+	return s, ok
+}
+
+// Merge adds what another document says. What both say alike is kept once.
+func (v *Inventory) Merge(other *Inventory) {
+	v.Stations = merge(v.Stations, other.Stations, func(s Station) string { return s.Network + "." + s.Code })
+	v.Channels = merge(v.Channels, other.Channels, func(c Channel) string { return c.name() })
+}
+
+func merge[T any](all, more []T, name func(T) string) []T {
+	held := map[string][]int{}
+	for i, a := range all {
+		held[name(a)] = append(held[name(a)], i)
+	}
+	for _, m := range more {
+		same := func(i int) bool { return reflect.DeepEqual(all[i], m) }
+		if key := name(m); !slices.ContainsFunc(held[key], same) {
+			held[key] = append(held[key], len(all))
+			all = append(all, m)
+		}
+	}
+	return all
+}
+
+func covers(start, end, from, to time.Time) bool {
+	return !from.Before(start) && (end.IsZero() || !to.After(end))
+}
+
+// list names epochs as "2010-01-01 to 2015-06-30 12:00, from 2015-07-01 on".
+func list(epochs []*Channel) string {
+	var parts []string
+	for i, c := range epochs {
+		if i == maxEpochs {
+			parts = append(parts, fmt.Sprintf("and %d more", len(epochs)-i))
+			break
+		}
+		from, to := "from "+stamp(c.Start), " to "+stamp(c.End)
+		if c.Start.IsZero() {
+			from = "from ever"
+		}
+		if c.End.IsZero() {
+			to = " on"
+		}
+		parts = append(parts, from+to)
+	}
+	return strings.Join(parts, ", ")
+}
+
+func stamp(t time.Time) string { return t.UTC().Format("2006-01-02T15:04:05Z") }
