@@ -34,6 +34,9 @@ func check(c *Channel) error {
 	return checkSamples(c)
 }
 
+// channelName is how a message tells a channel from the others of its file.
+func channelName(c *Channel) string { return orElse(c.ChannelCode, c.Orientation.Label) }
+
 func checkSamples(c *Channel) error {
 	peak, first := 0.0, c.Acceleration[0]
 	for i, a := range c.Acceleration {

@@ -1,8 +1,10 @@
 package ingest
 
 import (
+	"errors"
 	"fmt"
 	"strconv"
+	"strings"
 )
 
 // ParseError says why a file, or one channel of it, was refused. It prints as
@@ -33,6 +35,52 @@ func (e *ParseError) Cause() string {
 
 // Unwrap returns the cause.
 func (e *ParseError) Unwrap() error { return e.Err }
+
+// ChannelErrors are the refusals of single channels of a file, in their order.
+// The other channels of the file are read.
+type ChannelErrors []*ParseError
+
+// Error joins the refusals.
+func (e ChannelErrors) Error() string {
+	texts := make([]string, len(e))
+	for i, pe := range e {
+		texts[i] = pe.Error()
+	}
+	return strings.Join(texts, "\n")
+}
+
+// Unwrap returns the refusals.
+func (e ChannelErrors) Unwrap() []error {
+	errs := make([]error, len(e))
+	for i, pe := range e {
+		errs[i] = pe
+	}
+	return errs
+}
+
+// err is the error to return beside read channels: none, or where one refusal
+// is all there is of the file, that one.
+func (e ChannelErrors) err(read int) error {
+	switch {
+	case len(e) == 0:
+		return nil
+	case len(e) == 1 && read == 0:
+		return e[0]
+	}
+	return e
+}
+
+// parseErrors lists the refusals in an error: one of a file, several of
+// channels.
+func parseErrors(err error) []*ParseError {
+	if several, ok := errors.AsType[ChannelErrors](err); ok {
+		return several
+	}
+	if pe, ok := errors.AsType[*ParseError](err); ok {
+		return []*ParseError{pe}
+	}
+	return nil
+}
 
 // NotMotionError says that a file was recognised and holds no ground
 // acceleration: response spectra, a catalogue, a text to read. Such a file is

@@ -52,13 +52,15 @@ func fuzzFormat(t *testing.T, reader Format, data []byte) {
 		if !errors.As(err, &pe) && !errors.As(err, &not) {
 			t.Fatalf("error of type %T: %v", err, err)
 		}
-		if pe != nil && (pe.Line < 0 || pe.Line > content.Text.Len()) {
-			t.Fatalf("error in line %d of %d: %v", pe.Line, content.Text.Len(), err)
+		for _, pe := range parseErrors(err) {
+			if pe.Line < 0 || pe.Line > content.Text.Len() {
+				t.Fatalf("error in line %d of %d: %v", pe.Line, content.Text.Len(), err)
+			}
 		}
-		return
 	}
-	if len(channels) == 0 {
-		t.Fatal("neither channels nor an error")
+	var several ChannelErrors
+	if (err == nil) != (len(channels) > 0) && !errors.As(err, &several) {
+		t.Fatalf("%d channels beside the error %v", len(channels), err)
 	}
 	for i := range channels {
 		checkInvariants(t, &channels[i], content.Text.Len())

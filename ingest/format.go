@@ -2,7 +2,10 @@ package ingest
 
 import (
 	"errors"
+	"fmt"
 	"strings"
+
+	"swaybook/ingest/fdsnxml"
 )
 
 // Content is what a file holds.
@@ -42,8 +45,9 @@ type Format interface {
 	Sniff(c *Content) string
 	// Parse reads the channels. A refusal is a *ParseError, whose Path may be
 	// left empty; a recognised file without ground acceleration is a
-	// *NotMotionError. The channels of a nil error are not empty and meet the
-	// invariants that Channel states.
+	// *NotMotionError. Where single channels are refused, the error is
+	// ChannelErrors and the others are beside it. The channels of a nil error are
+	// not empty. All channels meet the invariants that Channel states.
 	Parse(c *Content, hints Hints) ([]Channel, error)
 }
 
@@ -55,6 +59,7 @@ var formats = []Format{
 	esm{},
 	knet{},
 	at2{},
+	miniSEED{},
 }
 
 // Formats describes all formats that are read, plain columns last.
@@ -81,14 +86,17 @@ type Hints struct {
 	// for many files, not for this one. It serves files that are silent; one that
 	// says otherwise is right; plain columns, whose headers are free text, warn.
 	UnitForAll, StepForAll bool
+	// Metadata is what documents say of channels and stations; nil for none.
+	Metadata *Metadata
 }
 
 // Parse recognises the file by its content and reads its channels. It returns
 // the name of the format beside them, "" where none was recognised. An error is
-// a *ParseError with its Path set, or a *NotMotionError.
+// a *ParseError with its Path set, a *NotMotionError, or ChannelErrors about
+// channels that are not among those returned.
 func Parse(path string, data []byte, hints Hints) (format string, channels []Channel, err error) {
 	format, channels, err = parse(data, hints)
-	if pe, ok := errors.AsType[*ParseError](err); ok {
+	for _, pe := range parseErrors(err) {
 		pe.Path = path
 	}
 	return format, channels, err
@@ -102,15 +110,32 @@ func parse(data []byte, hints Hints) (string, []Channel, error) {
 	}
 	name := reader.Info().Name
 	channels, err := reader.Parse(content, hints)
-	if err != nil {
+	refused, single := errors.AsType[ChannelErrors](err)
+	if err != nil && !single {
 		return name, nil, err
 	}
+	channels, refused = checkAll(channels, refused)
+	return name, channels, refused.err(len(channels))
+}
+
+// checkAll holds each channel to check and moves those that fail to the
+// refusals.
+func checkAll(channels []Channel, refused ChannelErrors) ([]Channel, ChannelErrors) {
+	var good []Channel
 	for i := range channels {
-		if err := check(&channels[i]); err != nil {
-			return name, nil, err
+		c := &channels[i]
+		err := check(c)
+		if err == nil {
+			good = append(good, *c)
+			continue
 		}
+		pe := parseErrors(err)[0]
+		if name := channelName(c); len(channels)+len(refused) > 1 && name != "" {
+			pe.Err = fmt.Errorf("channel %s: %w", name, pe.Err)
+		}
+		refused = append(refused, pe)
 	}
-	return name, channels, nil
+	return good, refused
 }
 
 // recognise returns the one format whose Sniff accepts the content. Two that do
@@ -132,6 +157,9 @@ func recognise(c *Content, textErr error) (Format, error) {
 		return nil, refuse(0, "", "file looks like more than one format: %s", strings.Join(saw, ", "))
 	case textErr != nil:
 		return nil, textErr
+	}
+	if kind := fdsnxml.Kind(c.Data); kind != "" {
+		return nil, &NotMotionError{kind + ", not used: only files named *.xml are, and those of --metadata"}
 	}
 	if err := notMotion(c.Text); err != nil {
 		return nil, err

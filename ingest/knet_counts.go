@@ -3,7 +3,7 @@ package ingest
 import "math"
 
 // maxCount is the largest count read, that of a 32-bit digitiser. Sums of
-// MaxFileSize/2 such counts fit an int64.
+// 2*MaxFileSize such counts, more than any packing holds, fit an int64.
 const maxCount = math.MaxInt32
 
 // readCounts reads exactly count integers from line on.
@@ -85,16 +85,42 @@ func parseInteger(b []byte) (int64, bool) {
 }
 
 // removeMean turns counts into m/s² about the mean of the whole record, which
-// the network's own peak refers to. The sum is exact.
+// the network's own peak refers to.
 func removeMean(c *Channel) {
-	sum := int64(0)
-	for _, v := range c.Acceleration {
-		sum += int64(v)
-	}
-	mean := float64(sum) / float64(len(c.Acceleration))
+	mean := meanOf(c.Acceleration)
 	for i, v := range c.Acceleration {
 		c.Acceleration[i] = (v - mean) * c.UnitMPS2
 	}
+}
+
+// meanOf returns the mean of x, whose sum is exact where all are counts. Of other
+// numbers it is compensated.
+func meanOf(x []float64) float64 {
+	sum := int64(0)
+	for _, v := range x {
+		if v != math.Trunc(v) || math.Abs(v) > maxCount+1 {
+			return compensatedSum(x) / float64(len(x))
+		}
+		sum += int64(v)
+	}
+	return float64(sum) / float64(len(x))
+}
+
+// compensatedSum adds up x and, apart, what each addition rounds off.
+//
+// Source: Neumaier, ZAMM 54, 1974 (from memory).
+func compensatedSum(x []float64) float64 {
+	sum, lost := 0.0, 0.0
+	for _, v := range x {
+		next := sum + v
+		if math.Abs(sum) >= math.Abs(v) {
+			lost += (sum - next) + v
+		} else {
+			lost += (v - next) + sum
+		}
+		sum = next
+	}
+	return sum + lost
 }
 
 // clippedRun is the number of equal samples at the extreme that suggests a

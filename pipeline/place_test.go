@@ -94,7 +94,7 @@ func TestPlace(t *testing.T) {
 func placeAll(t *testing.T, seats []seat) {
 	t.Helper()
 	store := newStore(t)
-	run, err := begin(t.Context(), store, withDefaults(options()))
+	run, err := begin(t.Context(), store, withDefaults(options()), map[string]decided{})
 	if err != nil {
 		t.Fatal(err)
 	}

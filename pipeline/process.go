@@ -1,6 +1,7 @@
 package pipeline
 
 import (
+	"cmp"
 	"context"
 	"crypto/sha256"
 	"encoding/hex"
@@ -34,6 +35,7 @@ type result struct {
 	reason   string // why it was skipped, or where held content was first read
 	err      error  // why it was rejected
 	channels []solved
+	refused  ingest.ChannelErrors // why other channels of a file that is read were not
 }
 
 // solved is one channel with what was computed of it.
@@ -52,18 +54,17 @@ type solved struct {
 type reader struct {
 	store     Store
 	catalogue *ingest.Catalogue
-	own       map[string]string // absolute path to reason
+	decided   map[string]decided // by absolute path
 	hints     ingest.Hints
 	solvers   solvers
 }
 
-func newReader(store Store, opts Options, grid db.Grid) *reader {
-	r := &reader{
-		store: store, catalogue: opts.Catalogue, own: map[string]string{}, hints: opts.Hints,
-		solvers: newSolvers(grid),
-	}
+// newReader returns a reader of the files but for those that are decided. It
+// decides the run's own.
+func newReader(store Store, opts Options, done map[string]decided, grid db.Grid) *reader {
+	r := &reader{store: store, catalogue: opts.Catalogue, decided: done, hints: opts.Hints, solvers: newSolvers(grid)}
 	for name, reason := range opts.Own {
-		r.own[absolute(name)] = reason
+		r.decided[absolute(name)] = decided{reason: reason}
 	}
 	return r
 }
@@ -72,7 +73,11 @@ func newReader(store Store, opts Options, grid db.Grid) *reader {
 // the file is part of the result; an error is the store's or the context's.
 func (r *reader) process(ctx context.Context, file ingest.Found) (result, error) {
 	res := result{source: db.Source{Path: file.Path}, rel: file.Rel, stem: stemOf(file.Path)}
-	if reason := r.skipReason(file); reason != "" {
+	done := r.decided[absolute(file.Path)]
+	if done.err != nil {
+		return res.rejected(done.err), ctx.Err()
+	}
+	if reason := cmp.Or(done.reason, ingest.SkipByName(path.Base(filepath.ToSlash(file.Path)))); reason != "" {
 		return res.skipped(reason), ctx.Err()
 	}
 	data, err := r.read(file, &res)
@@ -87,13 +92,6 @@ func (r *reader) process(ctx context.Context, file ingest.Found) (result, error)
 		return res.held(first), ctx.Err()
 	}
 	return r.parse(file, data, res), ctx.Err()
-}
-
-func (r *reader) skipReason(file ingest.Found) string {
-	if reason := r.own[absolute(file.Path)]; reason != "" {
-		return reason
-	}
-	return ingest.SkipByName(path.Base(filepath.ToSlash(file.Path)))
 }
 
 // absolute is the path in the one form in which two can be compared; a path
@@ -132,21 +130,25 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	if skip, ok := errors.AsType[*ingest.NotMotionError](err); ok {
 		return res.skipped(skip.Reason)
 	}
-	if err != nil {
+	refused, single := errors.AsType[ingest.ChannelErrors](err)
+	if err != nil && !single {
 		return res.rejected(err)
 	}
-	res.outcome = Stored
+	res.outcome, res.refused = Stored, refused
 	for i := range channels {
-		header := withoutSamples(channels[i])
+		accounts := []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: withoutSamples(channels[i])}}
+		if completed, ok := r.hints.Metadata.CompleteStation(&channels[i]); ok {
+			accounts = append(accounts, account{by: db.ByMetadata, source: "station metadata", channel: completed})
+		}
 		stated, matched := r.describe(file, res.stem, &channels[i])
 		s, err := r.solve(channels[i])
-		s.stated, s.matched = stated, matched
-		s.accounts = []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: header}}
+		s.stated, s.matched, s.accounts = stated, matched, accounts
 		if matched {
 			s.accounts = append(s.accounts, catalogueAccount(stated))
 		}
 		if err != nil {
-			return res.rejected(&ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
+			res.refused = append(res.refused, &ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
+			continue
 		}
 		res.channels = append(res.channels, s)
 	}

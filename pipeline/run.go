@@ -26,8 +26,10 @@ type Options struct {
 	Catalogue *ingest.Catalogue
 	// Own are the run's own files, which are skipped where they lie among the
 	// records: path to reason.
-	Own   map[string]string
-	Hints ingest.Hints // what the user states for files that are silent
+	Own map[string]string
+	// Hints are what the user states for files that are silent. The run adds to
+	// their Metadata the StationXML and QuakeML documents among the files.
+	Hints ingest.Hints
 	// Grid is the grid asked for. An empty list asks for the store's own, or
 	// for the default in a new store.
 	Grid    db.Grid
@@ -63,7 +65,8 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	if err != nil {
 		return Summary{}, err
 	}
-	run, err := begin(ctx, store, opts)
+	done := readMetadata(ctx, files, opts.Hints.Metadata)
+	run, err := begin(ctx, store, opts, done)
 	if err != nil {
 		return Summary{}, err
 	}
@@ -78,6 +81,9 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 func withDefaults(opts Options) Options {
 	if opts.Workers <= 0 {
 		opts.Workers = runtime.GOMAXPROCS(0)
+	}
+	if opts.Hints.Metadata == nil {
+		opts.Hints.Metadata = &ingest.Metadata{}
 	}
 	if opts.Progress == nil {
 		opts.Progress = func(Progress) {}
@@ -96,7 +102,7 @@ type state struct {
 }
 
 // begin opens the run's entry in the store and settles the generation.
-func begin(ctx context.Context, store Store, opts Options) (state, error) {
+func begin(ctx context.Context, store Store, opts Options, done map[string]decided) (state, error) {
 	var s state
 	err := store.Update(ctx, func(tx *db.Tx) error {
 		var err error
@@ -109,7 +115,7 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	if err != nil {
 		return state{}, err
 	}
-	s.reader = newReader(store, opts, s.generation.Grid)
+	s.reader = newReader(store, opts, done, s.generation.Grid)
 	return s, nil
 }
 

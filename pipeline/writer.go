@@ -115,10 +115,16 @@ func keepDigest(res result) string {
 	return ""
 }
 
-// storeChannels stores each channel in its record. A file none of whose
-// channels finds a place is rejected.
+// storeChannels stores each channel in its record, and why others could not be
+// read. A file none of whose channels finds a place is rejected.
 func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, report FileReport) (FileReport, error) {
 	sourceID := int64(0)
+	for _, refusal := range res.refused {
+		var err error
+		if report, err = w.reject(ctx, tx, res, report, refusal.Line, refusal); err != nil {
+			return report, err
+		}
+	}
 	for _, s := range res.channels {
 		p, err := place(ctx, tx, res, &s.channel)
 		if err != nil {

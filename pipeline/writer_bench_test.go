@@ -30,7 +30,7 @@ func BenchmarkWriter(b *testing.B) {
 		if err != nil {
 			b.Fatal(err)
 		}
-		run, err := begin(b.Context(), store, opts)
+		run, err := begin(b.Context(), store, opts, map[string]decided{})
 		if err != nil {
 			b.Fatal(err)
 		}

@@ -103,10 +103,11 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			formatsCommand(),
 			demoCommand(),
 		},
-		Writer:         stdout,
-		ErrWriter:      stderr,
-		ExitErrHandler: func(*cli.Context, error) {}, // run decides the exit code
-		Action:         missingCommand,
+		Writer:                    stdout,
+		ErrWriter:                 stderr,
+		DisableSliceFlagSeparator: true,                         // a comma may be part of a path
+		ExitErrHandler:            func(*cli.Context, error) {}, // run decides the exit code
+		Action:                    missingCommand,
 	}
 	app.OnUsageError = onUsageError
 	for _, c := range app.Commands {

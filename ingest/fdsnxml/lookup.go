@@ -20,11 +20,9 @@ const maxEpochs = 6
 // there are; ErrUnknown where there are none.
 func (v *Inventory) Lookup(network, station, location_, code string, from, to time.Time) (*Channel, error) {
 	var epochs, fit []*Channel
-	for i := range v.Channels {
+	wanted := Channel{Network: network, Station: station, Location: location(location_), Code: code}
+	for _, i := range v.channels[wanted.name()] {
 		c := &v.Channels[i]
-		if c.Station != station || c.Network != network || c.Location != location(location_) || c.Code != code {
-			continue
-		}
 		epochs = append(epochs, c)
 		if covers(c.Start, c.End, from, to) {
 			fit = append(fit, c)
@@ -49,8 +47,10 @@ func (v *Inventory) Lookup(network, station, location_, code string, from, to ti
 // Site returns the epoch of a station that covers the time, or any where the
 // time is zero. Where the epochs that fit are at different places, there is none.
 func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool) {
-	for _, other := range v.Stations {
-		if other.Network != network || other.Code != code || !at.IsZero() && !covers(other.Start, other.End, at, at) {
+	wanted := Station{Network: network, Code: code}
+	for _, i := range v.stations[wanted.name()] {
+		other := v.Stations[i]
+		if !at.IsZero() && !covers(other.Start, other.End, at, at) {
 			continue
 		}
 		if ok && (s.Latitude != other.Latitude || s.Longitude != other.Longitude || s.ElevationM != other.ElevationM) {
@@ -63,23 +63,35 @@ func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool
 
 // Merge adds what another document says. What both say alike is kept once.
 func (v *Inventory) Merge(other *Inventory) {
-	v.Stations = merge(v.Stations, other.Stations, func(s Station) string { return s.Network + "." + s.Code })
-	v.Channels = merge(v.Channels, other.Channels, func(c Channel) string { return c.name() })
+	for _, s := range other.Stations {
+		v.addStation(s)
+	}
+	for _, c := range other.Channels {
+		v.addChannel(c)
+	}
 }
 
-func merge[T any](all, more []T, name func(T) string) []T {
-	held := map[string][]int{}
-	for i, a := range all {
-		held[name(a)] = append(held[name(a)], i)
+func (v *Inventory) addStation(s Station) {
+	if v.stations == nil {
+		v.stations = map[string][]int{}
 	}
-	for _, m := range more {
-		same := func(i int) bool { return reflect.DeepEqual(all[i], m) }
-		if key := name(m); !slices.ContainsFunc(held[key], same) {
-			held[key] = append(held[key], len(all))
-			all = append(all, m)
-		}
+	v.Stations = add(v.Stations, s, s.name(), v.stations)
+}
+
+func (v *Inventory) addChannel(c Channel) {
+	if v.channels == nil {
+		v.channels = map[string][]int{}
 	}
-	return all
+	v.Channels = add(v.Channels, c, c.name(), v.channels)
+}
+
+// add appends an item that is not there yet and notes it under its name.
+func add[T any](all []T, item T, name string, held map[string][]int) []T {
+	if slices.ContainsFunc(held[name], func(i int) bool { return reflect.DeepEqual(all[i], item) }) {
+		return all
+	}
+	held[name] = append(held[name], len(all))
+	return append(all, item)
 }
 
 func covers(start, end, from, to time.Time) bool {

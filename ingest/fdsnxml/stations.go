@@ -52,6 +52,8 @@ type Sensitivity struct {
 type Inventory struct {
 	Stations []Station
 	Channels []Channel
+
+	stations, channels map[string][]int // indices by name
 }
 
 // The elements of StationXML that are read. The order of elements does not
@@ -132,7 +134,7 @@ func (r *stationReader) network(code string) error {
 // are the bulk of a document, are read and dropped in turn.
 func (r *stationReader) station(network string, start xml.StartElement) error {
 	raw := xmlStation{Code: attribute(start, "code"), Start: attribute(start, "startDate"), End: attribute(start, "endDate")}
-	first := len(r.inventory.Channels)
+	var channels []Channel
 	err := r.children(func(e xml.StartElement) error {
 		switch e.Name.Local {
 		case "Latitude":
@@ -152,7 +154,7 @@ func (r *stationReader) station(network string, start xml.StartElement) error {
 				return err
 			}
 			channel, err := c.channel(network, strings.TrimSpace(raw.Code))
-			r.inventory.Channels = append(r.inventory.Channels, channel)
+			channels = append(channels, channel)
 			return err
 		}
 		return r.reader.Skip()
@@ -164,10 +166,11 @@ func (r *stationReader) station(network string, start xml.StartElement) error {
 	if err != nil {
 		return r.fault(err)
 	}
-	for i := range r.inventory.Channels[first:] {
-		r.inventory.Channels[first+i].SiteName = s.Name
+	for _, c := range channels {
+		c.SiteName = s.Name
+		r.inventory.addChannel(c)
 	}
-	r.inventory.Stations = append(r.inventory.Stations, s)
+	r.inventory.addStation(s)
 	return nil
 }
 
@@ -233,6 +236,9 @@ func (r *xmlResponse) stageGain() float64 {
 func (c *Channel) name() string {
 	return strings.Join([]string{c.Network, c.Station, c.Location, c.Code}, ".")
 }
+
+// name is the station as XX.ABC.
+func (s *Station) name() string { return s.Network + "." + s.Code }
 
 func epoch(from, to string) (start, end time.Time, err error) {
 	if start, err = instant(from); err != nil {

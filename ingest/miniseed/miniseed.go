@@ -82,7 +82,7 @@ func (c *Channel) Gaps() []Gap {
 	var gaps []Gap
 	for i := 1; i < len(c.Traces); i++ {
 		before := &c.Traces[i-1]
-		if !sameRate(before.Rate, c.Traces[i].Rate) {
+		if !SameRate(before.Rate, c.Traces[i].Rate) {
 			continue
 		}
 		end := before.At(len(before.Samples))

@@ -7,9 +7,9 @@ import (
 	"time"
 )
 
-// sameRate reports whether two rates are the same but for what headers round:
+// SameRate reports whether two rates are the same but for what headers round:
 // 0.01 %.
-func sameRate(a, b float64) bool { return math.Abs(a-b) <= 1e-4*a }
+func SameRate(a, b float64) bool { return math.Abs(a-b) <= 1e-4*a }
 
 // traces joins the records of one channel, which are in the order of time. The
 // samples of a trace are allocated at once.
@@ -34,7 +34,7 @@ func contiguous(records []record) int {
 	end := first.start + first.duration()
 	for i := 1; i < len(records); i++ {
 		r := &records[i]
-		if !sameRate(first.rate, r.rate) || r.lateness(end) > 0.5 {
+		if !SameRate(first.rate, r.rate) || r.lateness(end) > 0.5 {
 			return i
 		}
 		end = max(end, r.start+r.duration())

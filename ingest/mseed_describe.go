@@ -1,0 +1,187 @@
+package ingest
+
+import (
+	"errors"
+	"math"
+	"slices"
+	"strings"
+
+	"swaybook/ingest/fdsnxml"
+	"swaybook/ingest/miniseed"
+)
+
+// boreholeDepthM is the depth from which on a sensor is taken to be in a hole;
+// shallower ones stand in a pit or a vault. Common practice, with no source.
+const boreholeDepthM = 3
+
+// describe settles the scale of the samples and fills in what the epoch of the
+// channel says.
+func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
+	last := t.At(len(t.Samples) - 1)
+	epoch, lookup := hints.Metadata.epoch(c.id.Network, c.id.Station, c.id.Location, c.id.Channel, t.Start, last)
+	var err error
+	switch isFloat, stated := t.Encoding.IsFloat(), hints.Unit != ""; {
+	case isFloat && stated && (lookup != nil || !hints.UnitForAll):
+		err = c.statedUnit(hints)
+	case !isFloat && stated && !hints.UnitForAll:
+		return refuse(0, c.id.String(), "the samples are counts, %s says %s", orElse(hints.UnitFrom, "the hint"), hints.Unit)
+	case lookup != nil:
+		return c.noEpoch(t, lookup)
+	default:
+		err = c.sensitivity(epoch)
+	}
+	if err != nil {
+		return err
+	}
+	c.orient(epoch)
+	if epoch != nil {
+		c.place(epoch)
+	}
+	return nil
+}
+
+// noEpoch says what is missing to read the samples.
+func (c *mseedChannel) noEpoch(t *miniseed.Trace, lookup error) error {
+	known := ""
+	if !errors.Is(lookup, fdsnxml.ErrUnknown) {
+		known = "; " + lookup.Error()
+	}
+	if t.Encoding.IsFloat() {
+		return refuse(0, "", "floating-point samples of %s at %s need a unit (--unit), or a StationXML file that covers them (--metadata)%s",
+			c.id, instantText(t.Start), known)
+	}
+	return refuse(0, "", "counts need the sensitivity of %s at %s: name a StationXML file that covers it (--metadata)%s", c.id, instantText(t.Start), known)
+}
+
+// statedUnit takes the unit of the hints.
+func (c *mseedChannel) statedUnit(hints Hints) error {
+	unit, _, err := chooseUnit(statement{}, hints)
+	c.Unit, c.UnitMPS2, c.Processing = unit.Name, unit.MPS2, ProcessingUnknown
+	return err
+}
+
+// countWords are how StationXML documents name the unit of a digitiser.
+var countWords = []string{"count", "counts", "digital counts"}
+
+// sensitivity takes the scale of counts from the epoch. A negative one turns the
+// direction.
+func (c *mseedChannel) sensitivity(e *fdsnxml.Channel) error {
+	name, s := c.id.String(), e.Sensitivity
+	switch {
+	case s == nil && e.Polynomial:
+		return refuse(0, name, "the station metadata give a polynomial, no sensitivity")
+	case s == nil:
+		return refuse(0, name, "the station metadata give no sensitivity")
+	case isOtherMotion(s.InputUnit):
+		return &NotMotionError{"its sensitivity is for " + s.InputUnit + ", not an acceleration"}
+	case !slices.Contains(countWords, strings.ToLower(s.OutputUnit)):
+		return refuse(0, name, "the sensitivity makes %s, not counts", found(s.OutputUnit))
+	}
+	unit, err := ParseUnit(s.InputUnit)
+	if err != nil {
+		return refuse(0, name, "input unit of the sensitivity: %w", err)
+	}
+	c.Unit, c.UnitMPS2 = "counts", unit.MPS2/math.Abs(s.Value)
+	if !(c.UnitMPS2 > 0) || math.IsInf(c.UnitMPS2, 0) {
+		return refuse(0, name, "a sensitivity of %g is no scale", s.Value)
+	}
+	c.counts, c.Processing, c.turned = true, ProcessingMeanRemoved, s.Value < 0
+	if c.turned {
+		c.warn("the sensitivity is negative: the samples are turned")
+	}
+	if unit.MPS2 != 1 {
+		c.warn("the sensitivity is for %s", unit.Name)
+	}
+	c.checkEpoch(e)
+	return nil
+}
+
+// isOtherMotion reports whether a unit is one of velocity or displacement.
+func isOtherMotion(unit string) bool {
+	text := strings.TrimLeft(unitSpelling.Replace(strings.ToLower(unit)), "nuµ")
+	_, velocity := cutUnit(text, perSecond)
+	_, length := lengthWords[text]
+	return velocity || length
+}
+
+// The differences from which on two statements of the metadata, or those of
+// metadata and records, are told.
+const (
+	gainAgreement = 0.05
+	rateAgreement = 1e-3
+)
+
+// checkEpoch compares what the epoch says twice, and what records say too.
+func (c *mseedChannel) checkEpoch(e *fdsnxml.Channel) {
+	s := e.Sensitivity.Value
+	if e.StageGain != 0 && math.Abs(e.StageGain-s) > gainAgreement*math.Abs(s) {
+		c.warn("the stages' gains make %.6g, the sensitivity is %.6g", e.StageGain, s)
+	}
+	if e.RateHz > 0 && math.Abs(e.RateHz*c.StepS-1) > rateAgreement {
+		c.warn("records have %.6g Hz, the station metadata say %.6g Hz", 1/c.StepS, e.RateHz)
+	}
+}
+
+// place fills in station and siting.
+func (c *mseedChannel) place(e *fdsnxml.Channel) {
+	s := &c.Station
+	s.Name = e.SiteName
+	s.Latitude, s.Longitude = Known(e.Latitude), Known(e.Longitude)
+	s.ElevationM = Known(e.ElevationM + e.DepthM)
+	if e.DepthM > boreholeDepthM {
+		c.Siting = SitingBorehole
+	}
+}
+
+// The angles in degrees by which an axis may be off the horizontal, the vertical
+// or its letter before a warning says so; from verticalDip on it is vertical.
+const (
+	axisTolerance = 5
+	verticalDip   = 45
+)
+
+// orient takes the direction from dip and azimuth, which are down from the
+// horizontal and clockwise from north, else from the letters E, N and Z; other
+// letters say nothing.
+func (c *mseedChannel) orient(e *fdsnxml.Channel) {
+	letter := c.id.Channel[len(c.id.Channel)-1:]
+	byLetter := Orientation{}
+	if strings.Contains("ENZ", letter) {
+		byLetter, _ = direction(letter)
+	}
+	byLetter.Label = letter
+	c.Orientation = byLetter
+	if e == nil {
+		return
+	}
+	if dip := e.DipDeg; dip != nil {
+		c.byDip(*dip)
+	}
+	if e.AzimuthDeg == nil || c.Orientation.Axis == AxisVertical {
+		return
+	}
+	c.Orientation.Axis, c.Orientation.AzimuthDeg = AxisHorizontal, Known(*e.AzimuthDeg)
+	if a := byLetter.AzimuthDeg; a.Known && math.Abs(math.Remainder(*e.AzimuthDeg-a.Value, 360)) > axisTolerance {
+		c.warn("a channel %s with an azimuth of %g°: the azimuth taken", letter, *e.AzimuthDeg)
+	}
+}
+
+// byDip tells vertical from horizontal. A vertical that is positive down is
+// turned.
+func (c *mseedChannel) byDip(dip float64) {
+	o := &c.Orientation
+	if math.Abs(dip) > verticalDip {
+		*o = Orientation{Axis: AxisVertical, Label: o.Label}
+		c.turned = c.turned != (dip > 0)
+		if math.Abs(dip) < 90-axisTolerance {
+			c.warn("a dip of %g°: taken for vertical", dip)
+		}
+		return
+	}
+	if o.Axis != AxisHorizontal {
+		*o = Orientation{Axis: AxisHorizontal, Label: o.Label}
+	}
+	if math.Abs(dip) > axisTolerance {
+		c.warn("a dip of %g°: taken for horizontal", dip)
+	}
+}
