@@ -63,7 +63,7 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 	if err != nil {
 		return nil, err
 	}
-	form, err := detectLayout(t, head.first)
+	form, err := detectForm(t, head.first)
 	if err != nil {
 		return nil, err
 	}

@@ -27,7 +27,7 @@ type plainColumn struct {
 // columns gives the columns their meaning by the names over them. Unnamed, one
 // column is the values, and two wait for settleColumns; three and more are
 // refused, as is a name that nobody knows among them.
-func (h *plainHead) columns(form layout) ([]plainColumn, error) {
+func (h *plainHead) columns(form numberForm) ([]plainColumn, error) {
 	columns, err := h.named(form)
 	if err != nil {
 		return nil, err
@@ -53,7 +53,7 @@ func (h *plainHead) columns(form layout) ([]plainColumn, error) {
 
 // named reads the line over the numbers as names, nil where it does not hold
 // one for each column.
-func (h *plainHead) named(form layout) ([]plainColumn, error) {
+func (h *plainHead) named(form numberForm) ([]plainColumn, error) {
 	if h.namesLine == 0 {
 		return nil, nil
 	}
@@ -78,7 +78,7 @@ func (h *plainHead) named(form layout) ([]plainColumn, error) {
 
 // splitNames splits a header row in the ways it may be written: with the
 // delimiter of the numbers, else with another one, else as one name.
-func splitNames(text string, form layout) [][]string {
+func splitNames(text string, form numberForm) [][]string {
 	var ways [][]string
 	for _, d := range []byte{form.delimiter, '\t', ';', ','} {
 		if d != ' ' && strings.IndexByte(text, d) >= 0 {

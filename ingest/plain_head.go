@@ -34,8 +34,8 @@ func firstNumbers(t *Text) int {
 		if isComment(line) || !numberLike(line) {
 			continue
 		}
-		for _, l := range layouts {
-			if _, ok := l.count(line); ok {
+		for _, f := range numberForms {
+			if _, ok := f.count(line); ok {
 				return n
 			}
 		}

@@ -50,10 +50,10 @@ func (f *faults) err() error {
 	return refuse(f.lines[0], "samples", "%s (%d lines at fault: %s)", f.cause, f.total, named)
 }
 
-// readRows reads all lines from first on. Every line must fit the layout; one
+// readRows reads all lines from first on. Every line must fit the form; one
 // blank line at a time is passed over. A first line that holds nothing but the
 // number of those below it is a count.
-func readRows(t *Text, first int, form layout) (*plainRows, error) {
+func readRows(t *Text, first int, form numberForm) (*plainRows, error) {
 	r := newPlainRows(t, first, form)
 	var bad faults
 	blanks, count := 0, math.NaN()
@@ -100,7 +100,7 @@ func readRows(t *Text, first int, form layout) (*plainRows, error) {
 
 // newPlainRows makes room for the rows: as many as can stand in the bytes there
 // are, each value with its delimiter taking two at least.
-func newPlainRows(t *Text, first int, form layout) *plainRows {
+func newPlainRows(t *Text, first int, form numberForm) *plainRows {
 	r := &plainRows{values: make([][]float64, form.fields), resolution: make([]float64, form.fields),
 		head: strings.TrimSpace(latin(t.Bytes(first)))}
 	room := min(t.Len()-first+1, countFields(t, first)/form.fields+1)
@@ -115,21 +115,21 @@ func newPlainRows(t *Text, first int, form layout) *plainRows {
 // oddFirstLine looks at a first line that does not fit the others. One number
 // over several columns may be a count and is returned; a count and a time step
 // over one column are refused by name. The count is NaN for all else.
-func oddFirstLine(line []byte, n int, form layout) (count float64, err error) {
+func oddFirstLine(line []byte, n int, form numberForm) (count float64, err error) {
 	if form.fields > 1 {
 		if v, ok := form.number(bytes.TrimSpace(line), nil); ok {
 			return v, nil
 		}
 		return math.NaN(), nil
 	}
-	if fields, ok := (layout{delimiter: ' '}).count(line); ok && fields == 2 {
+	if fields, ok := (numberForm{delimiter: ' '}).count(line); ok && fields == 2 {
 		return 0, refuse(n, "samples", "%s: a count and a time step before the values? remove the line and give the step with --dt", found(latin(line)))
 	}
 	return math.NaN(), nil
 }
 
 // append reads one line into the columns, all of it or nothing.
-func (r *plainRows) append(line []byte, n int, form layout, scratch []byte) bool {
+func (r *plainRows) append(line []byte, n int, form numberForm, scratch []byte) bool {
 	i := 0
 	rows := len(r.line)
 	for rest := line; len(rest) > 0; {

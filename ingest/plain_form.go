@@ -8,45 +8,45 @@ import (
 	"strings"
 )
 
-// layout is how the numbers of a plain file are written: what separates them,
+// numberForm is how the numbers of a file are written: what separates them,
 // what marks their decimals, and how many stand on a line.
-type layout struct {
+type numberForm struct {
 	delimiter byte // ' ' for any run of blanks
 	comma     bool // decimal comma
 	fields    int
 }
 
-// layouts are the readings that are tried; of two that fit equally well the
+// numberForms are the readings that are tried; of two that fit equally well the
 // first is taken. A decimal comma between commas is not one: it could be read
 // in two ways.
-var layouts = []layout{
+var numberForms = []numberForm{
 	{delimiter: '\t'}, {delimiter: '\t', comma: true},
 	{delimiter: ';'}, {delimiter: ';', comma: true},
 	{delimiter: ','},
 	{delimiter: ' '}, {delimiter: ' ', comma: true},
 }
 
-// detectLayout finds the reading that fits most of the first lines of numbers.
-func detectLayout(t *Text, first int) (layout, error) {
+// detectForm finds the reading that fits most of the first lines of numbers.
+func detectForm(t *Text, first int) (numberForm, error) {
 	lines := headLines(t, first)
-	best, fits := layout{}, 0
-	for _, l := range layouts {
-		if fields, n := l.fit(lines); n > fits {
-			best, fits = l, n
+	best, fits := numberForm{}, 0
+	for _, f := range numberForms {
+		if fields, n := f.fit(lines); n > fits {
+			best, fits = f, n
 			best.fields = fields
 		}
 	}
 	if fits == 0 {
-		return layout{}, refuse(first, "samples", "%s", badLine(t.Bytes(first)))
+		return numberForm{}, refuse(first, "samples", "%s", badLine(t.Bytes(first)))
 	}
 	if best.comma && best.fields == 1 {
-		pairs, n := (layout{delimiter: ','}).fit(lines)
+		pairs, n := (numberForm{delimiter: ','}).fit(lines)
 		if n == fits && pairs == 2 && integerPairs(lines) {
-			return layout{}, refuse(first, "samples", "%s may be one number with a decimal comma or two integers; write decimal points", found(string(lines[0])))
+			return numberForm{}, refuse(first, "samples", "%s may be one number with a decimal comma or two integers; write decimal points", found(string(lines[0])))
 		}
 	}
 	if best.delimiter == ',' && best.fields >= 4 && best.fields%2 == 0 && !bytes.Contains(bytes.Join(lines, nil), []byte(".")) {
-		return layout{}, refuse(first, "samples", "%s: commas may separate numbers or mark decimals; write decimal points", found(string(lines[0])))
+		return numberForm{}, refuse(first, "samples", "%s: commas may separate numbers or mark decimals; write decimal points", found(string(lines[0])))
 	}
 	return best, nil
 }
@@ -62,12 +62,12 @@ func headLines(t *Text, first int) [][]byte {
 	return lines
 }
 
-// fit returns the number of fields that most lines have under the layout, all
+// fit returns the number of fields that most lines have in the form, all
 // of them numbers, and the number of those lines.
-func (l layout) fit(lines [][]byte) (fields, fits int) {
+func (f numberForm) fit(lines [][]byte) (fields, fits int) {
 	counts := map[int]int{}
 	for _, line := range lines {
-		if n, ok := l.count(line); ok {
+		if n, ok := f.count(line); ok {
 			counts[n]++
 		}
 	}
@@ -81,11 +81,11 @@ func (l layout) fit(lines [][]byte) (fields, fits int) {
 
 // count returns the number of fields of a line; it reports false where one is
 // no number.
-func (l layout) count(line []byte) (n int, ok bool) {
+func (f numberForm) count(line []byte) (n int, ok bool) {
 	var room [64]byte
 	for rest := line; len(rest) > 0; {
 		var field []byte
-		if field, rest, _, ok = l.read(rest, room[:0]); field == nil {
+		if field, rest, _, ok = f.read(rest, room[:0]); field == nil {
 			break
 		}
 		if !ok {
@@ -120,27 +120,27 @@ func isPlainInteger(b []byte) bool {
 // the field, nil where there is none, what follows it and its delimiter, the
 // value, and whether it is a number; scratch is room for a rewritten copy. A
 // delimiter at the end of the line makes no field.
-func (l layout) read(line, scratch []byte) (field, rest []byte, v float64, ok bool) {
+func (f numberForm) read(line, scratch []byte) (field, rest []byte, v float64, ok bool) {
 	for len(line) > 0 && line[0] == ' ' {
 		line = line[1:]
 	}
-	v, n := leadingNumber(line, l.mark()) // always below maxPlain
+	v, n := leadingNumber(line, f.mark()) // always below maxPlain
 	switch {
 	case n == 0:
 	case n == len(line):
 		return line, nil, v, true
-	case line[n] == l.delimiter:
+	case line[n] == f.delimiter:
 		return line[:n], line[n+1:], v, true
 	}
-	if field, rest = l.next(line); field != nil {
-		v, ok = l.number(field, scratch)
+	if field, rest = f.next(line); field != nil {
+		v, ok = f.number(field, scratch)
 	}
 	return field, rest, v, ok
 }
 
 // mark returns what marks decimals.
-func (l layout) mark() byte {
-	if l.comma {
+func (f numberForm) mark() byte {
+	if f.comma {
 		return ','
 	}
 	return '.'
@@ -148,12 +148,12 @@ func (l layout) mark() byte {
 
 // next returns the next field of a line without blanks and quotes, nil where
 // there is none, and what follows it and its delimiter.
-func (l layout) next(line []byte) (field, rest []byte) {
-	if l.delimiter == ' ' {
+func (f numberForm) next(line []byte) (field, rest []byte) {
+	if f.delimiter == ' ' {
 		field, rest = nextField(line)
 		return unquote(field), rest
 	}
-	field, rest, _ = bytes.Cut(line, []byte{l.delimiter})
+	field, rest, _ = bytes.Cut(line, []byte{f.delimiter})
 	return unquote(bytes.TrimSpace(field)), rest
 }
 
@@ -172,12 +172,12 @@ var unicodeMinus = []byte("−")
 
 // number reads a field; scratch is room for a rewritten copy. It reports false
 // for what is no number, for a sign inside, and for magnitudes of maxPlain.
-func (l layout) number(field, scratch []byte) (float64, bool) {
+func (f numberForm) number(field, scratch []byte) (float64, bool) {
 	if bytes.HasPrefix(field, unicodeMinus) {
 		scratch = append(append(scratch, '-'), field[len(unicodeMinus):]...)
 		field = scratch
 	}
-	if l.comma {
+	if f.comma {
 		if bytes.IndexByte(field, '.') >= 0 {
 			return 0, false
 		}
@@ -202,7 +202,7 @@ var (
 	innerSign = regexp.MustCompile(`[0-9.][-+−][0-9.]`)
 )
 
-// badLine says what is wrong with a line that no layout reads.
+// badLine says what is wrong with a line that no form reads.
 func badLine(line []byte) string {
 	text := strings.TrimSpace(latin(line))
 	if thousands.MatchString(text) || spaced.MatchString(text) {
@@ -234,13 +234,13 @@ func badField(field string) string {
 	return ""
 }
 
-// cause says why a line does not fit the layout that the others have.
-func (l layout) cause(line []byte) string {
+// cause says why a line does not fit the form that the others have.
+func (f numberForm) cause(line []byte) string {
 	n := 0
 	for rest := line; len(rest) > 0; {
 		var field []byte
 		var ok bool
-		if field, rest, _, ok = l.read(rest, nil); field == nil {
+		if field, rest, _, ok = f.read(rest, nil); field == nil {
 			break
 		}
 		n++
@@ -256,5 +256,5 @@ func (l layout) cause(line []byte) string {
 		}
 		return fmt.Sprintf("expected a number, found %s", found(text))
 	}
-	return fmt.Sprintf("line holds %d values where the others hold %d", n, l.fields)
+	return fmt.Sprintf("line holds %d values where the others hold %d", n, f.fields)
 }
