@@ -5,6 +5,7 @@ go 1.26.0
 require (
 	github.com/expr-lang/expr v1.17.8
 	github.com/klauspost/compress v1.20.4
+	github.com/pelletier/go-toml/v2 v2.4.3
 	github.com/rogpeppe/go-internal v1.16.0
 	github.com/schollz/progressbar/v3 v3.19.1
 	github.com/urfave/cli/v2 v2.27.7

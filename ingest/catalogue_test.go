@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"os"
 	"path/filepath"
+	"reflect"
 	"slices"
 	"strings"
 	"sync"
@@ -40,7 +41,7 @@ func TestCatalogueFixture(t *testing.T) {
 	}
 	const rel = "plain/silent.txt"
 	hints := c.Hints(rel, Hints{Unit: "gal", UnitFrom: "--unit"})
-	if want := (Hints{Unit: "g", UnitFrom: "catalogue line 3", StepS: 0.01, StepFrom: "catalogue line 3"}); hints != want {
+	if want := (Hints{Unit: "g", UnitFrom: "catalogue line 3", StepS: 0.01, StepFrom: "catalogue line 3"}); !reflect.DeepEqual(hints, want) {
 		t.Errorf("Hints = %+v, want %+v", hints, want)
 	}
 	ch := readFixture(t, "plain", "silent.txt", hints)

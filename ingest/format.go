@@ -62,11 +62,15 @@ var formats = []Format{
 	miniSEED{},
 }
 
-// Formats describes all formats that are read, plain columns last.
-func Formats() []Info {
-	infos := make([]Info, 0, len(formats)+1)
+// Formats describes all formats that are read, those of the layouts after the
+// built-in ones, plain columns last.
+func Formats(layouts Layouts) []Info {
+	var infos []Info
 	for _, f := range formats {
 		infos = append(infos, f.Info())
+	}
+	for _, l := range layouts {
+		infos = append(infos, l.Info())
 	}
 	return append(infos, plain{}.Info())
 }
@@ -88,6 +92,9 @@ type Hints struct {
 	UnitForAll, StepForAll bool
 	// Metadata is what documents say of channels and stations; nil for none.
 	Metadata *Metadata
+	// Layouts are the formats that the user has described. A file may be one of
+	// them as it may be one of the built-in formats.
+	Layouts Layouts
 }
 
 // Parse recognises the file by its content and reads its channels. It returns
@@ -104,7 +111,7 @@ func Parse(path string, data []byte, hints Hints) (format string, channels []Cha
 
 func parse(data []byte, hints Hints) (string, []Channel, error) {
 	content, textErr := newContent(data)
-	reader, err := recognise(content, textErr)
+	reader, err := recognise(content, textErr, hints.Layouts)
 	if err != nil {
 		return "", nil, err
 	}
@@ -138,17 +145,23 @@ func checkAll(channels []Channel, refused ChannelErrors) ([]Channel, ChannelErro
 	return good, refused
 }
 
-// recognise returns the one format whose Sniff accepts the content. Two that do
-// are an error, since a guess would decide what the numbers mean. textErr says
-// why the content is no text, if it is none.
-func recognise(c *Content, textErr error) (Format, error) {
+// recognise returns the one format, built in or described, whose Sniff accepts
+// the content. Two that do are an error, since a guess would decide what the
+// numbers mean. textErr says why the content is no text, if it is none.
+func recognise(c *Content, textErr error, layouts Layouts) (Format, error) {
 	var match []Format
 	var saw []string
-	for _, f := range formats {
+	try := func(f Format) {
 		if s := f.Sniff(c); s != "" {
 			match = append(match, f)
 			saw = append(saw, f.Info().Name+" ("+s+")")
 		}
+	}
+	for _, f := range formats {
+		try(f)
+	}
+	for _, l := range layouts {
+		try(l)
 	}
 	switch {
 	case len(match) == 1:

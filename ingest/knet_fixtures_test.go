@@ -16,6 +16,7 @@ var updateColumns = flag.Bool("update-columns", false, "rewrite the fixtures of 
 // make; with -update-columns it rewrites them.
 func TestColumnFixtures(t *testing.T) {
 	all := append(knetFixtures(t), at2Fixtures(t)...)
+	all = append(all, layoutFixtures()...)
 	for _, f := range append(all, plainFixtures(t)...) {
 		path := filepath.Join(recordsDir(f.format), f.name)
 		want := strings.Join(f.lines, f.ending) + f.ending

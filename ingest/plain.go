@@ -115,7 +115,7 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		if err := h.describe(&c); err != nil {
 			return nil, err
 		}
-		if err := checkSentinels(&c, rows); err != nil {
+		if err := checkSentinels(&c, func(i int) int { return rows.line[i] }); err != nil {
 			return nil, err
 		}
 		warnClipping(&c, clippedRun+1)

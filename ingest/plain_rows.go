@@ -183,8 +183,9 @@ func resolution(field []byte) float64 {
 var sentinels = []float64{-999, -9999, 99999}
 
 // checkSentinels looks for values that stand far from all others and are
-// written like "no value": several are refused, one is a warning.
-func checkSentinels(c *Channel, rows *plainRows) error {
+// written like "no value": several are refused, one is a warning. line gives the
+// line of a value.
+func checkSentinels(c *Channel, line func(i int) int) error {
 	isSentinel := func(v float64) bool { return slices.Contains(sentinels, v) }
 	if !slices.ContainsFunc(c.Acceleration, isSentinel) {
 		return nil
@@ -194,7 +195,7 @@ func checkSentinels(c *Channel, rows *plainRows) error {
 		for i, v := range c.Acceleration {
 			if v == mark {
 				if count++; count == 1 {
-					first = rows.line[i]
+					first = line(i)
 				}
 				continue
 			}

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"os"
 	"text/tabwriter"
 
 	"github.com/urfave/cli/v2"
@@ -18,8 +19,8 @@ func formatsCommand() *cli.Command {
 		Name:  "formats",
 		Usage: "list the record formats that are read",
 		Description: "Formats are recognised by content, whatever a file's name. What matches two of them is rejected; plain columns are\n" +
-			"the last resort.",
-		Flags: []cli.Flag{formatFlag("table or json")},
+			"the last resort. A layout describes a format of one's own; README.md says how.",
+		Flags: []cli.Flag{layoutFlag(), formatFlag("table or json")},
 		Action: func(c *cli.Context) error {
 			var form query.Format
 			err := errors.Join(noArguments(c), parseInto(&form, c, "format", func(s string) (query.Format, error) {
@@ -28,9 +29,33 @@ func formatsCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			return runFormats(c.App.Writer, form)
+			layouts, err := readLayouts(c.StringSlice("layout"))
+			if err != nil {
+				return err
+			}
+			return runFormats(c.App.Writer, form, layouts)
 		},
 	}
+}
+
+func layoutFlag() cli.Flag {
+	return &cli.StringSliceFlag{Name: "layout", Usage: "TOML `FILE` that describes a text format; may be given several times"}
+}
+
+// readLayouts loads the layouts before anything else is done.
+func readLayouts(names []string) (layouts ingest.Layouts, err error) {
+	for _, name := range names {
+		f, err := os.Open(name)
+		if err != nil {
+			return nil, fmt.Errorf("read layout: %w", err)
+		}
+		err = layouts.Read(name, f)
+		f.Close()
+		if err != nil {
+			return nil, err
+		}
+	}
+	return layouts, nil
 }
 
 // formatRow is one format in JSON.
@@ -42,9 +67,9 @@ type formatRow struct {
 	NotRead  string `json:"not_read"`
 }
 
-func runFormats(w io.Writer, form query.Format) error {
+func runFormats(w io.Writer, form query.Format, layouts ingest.Layouts) error {
 	var rows []formatRow
-	for _, f := range ingest.Formats() {
+	for _, f := range ingest.Formats(layouts) {
 		rows = append(rows, formatRow(f))
 	}
 	if form == query.FormatJSON {

@@ -30,6 +30,7 @@ func ingestCommand() *cli.Command {
 		Flags: []cli.Flag{
 			&cli.StringFlag{Name: "catalogue", Usage: "CSV `FILE` that joins or overrides metadata"},
 			&cli.StringSliceFlag{Name: "metadata", Usage: "StationXML or QuakeML `FILE`, or a folder of *.xml; may be given again"},
+			layoutFlag(),
 			&cli.StringFlag{Name: "unit", Usage: "`UNIT` of samples in files that state none: g, mg, gal, m/s2, cm/s2, mm/s2, in/s2, ft/s2"},
 			&cli.Float64Flag{Name: "dt", DefaultText: "none", Usage: "time step in `S` of files that state none"},
 			&cli.StringFlag{Name: "periods", Usage: "periods of a new store's grid in s: a `LIST` such as 0.1,0.2,1 or @FILE"},
@@ -89,6 +90,12 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	}
 	if o.pipeline.Hints.Metadata, err = ingest.ReadMetadata(c.StringSlice("metadata")); err != nil {
 		return o, err
+	}
+	if o.pipeline.Hints.Layouts, err = readLayouts(c.StringSlice("layout")); err != nil {
+		return o, err
+	}
+	for _, name := range c.StringSlice("layout") {
+		o.pipeline.Own[name] = "a layout itself"
 	}
 	if o.pipeline.Grid, err = ingestGrid(c); err != nil {
 		return o, err

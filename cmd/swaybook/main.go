@@ -96,6 +96,8 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected; 130 interrupted.\n\n" + caution,
 		Flags:  globalFlags(),
 		Before: checkGlobalFlags,
+		// The name of a file may hold commas; lists are for their own flags to read.
+		DisableSliceFlagSeparator: true,
 		Commands: []*cli.Command{
 			ingestCommand(),
 			queryCommand(),
@@ -103,11 +105,10 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			formatsCommand(),
 			demoCommand(),
 		},
-		Writer:                    stdout,
-		ErrWriter:                 stderr,
-		DisableSliceFlagSeparator: true,                         // a comma may be part of a path
-		ExitErrHandler:            func(*cli.Context, error) {}, // run decides the exit code
-		Action:                    missingCommand,
+		Writer:         stdout,
+		ErrWriter:      stderr,
+		ExitErrHandler: func(*cli.Context, error) {}, // run decides the exit code
+		Action:         missingCommand,
 	}
 	app.OnUsageError = onUsageError
 	for _, c := range app.Commands {

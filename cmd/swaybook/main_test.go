@@ -22,8 +22,9 @@ func TestScripts(t *testing.T) {
 		Dir:           filepath.Join("..", "..", "testdata", "script"),
 		UpdateScripts: *update,
 		Setup: func(env *testscript.Env) error {
-			records, err := filepath.Abs(filepath.Join("..", "..", "testdata", "records"))
-			env.Setenv("RECORDS", records)
+			testdata, err := filepath.Abs(filepath.Join("..", "..", "testdata"))
+			env.Setenv("RECORDS", filepath.Join(testdata, "records"))
+			env.Setenv("LAYOUTS", filepath.Join(testdata, "layouts"))
 			return err
 		},
 		Cmds: map[string]func(*testscript.TestScript, bool, []string){"status": status},
