@@ -160,49 +160,40 @@ func (l *Layout) orient(c *Channel, v layoutValues, column int) error {
 // describe fills in what is known of event, station and record. What is not
 // understood is a warning.
 func (l *Layout) describe(c *Channel, v layoutValues, column int) {
-	var row catalogueRow
+	row := catalogueRow{channel: *c}
 	for _, name := range quantityNames() {
 		s, ok := l.stated(v, name, column)
 		if !ok {
 			continue
 		}
-		text := s.text
-		switch name {
-		case "unit", "dt_s", "rate_hz", "count", "channels", "scale", "scale_divisor", "peak", "direction", "azimuth_deg":
-			continue // settled
+		var err error
+		switch text := s.text; name {
+		case "unit", "dt_s", "rate_hz", "count", "channels", "scale", "scale_divisor", "peak", "direction", "azimuth_deg": // settled
 		case "channel":
-			c.ChannelCode = text
-			continue
+			row.channel.ChannelCode = text
 		case "processing":
-			p, err := parseProcessing(text)
-			if c.Processing = p; err != nil {
-				c.Processing = ProcessingUnknown
-				c.warn("line %d: processing %s not understood", s.line, found(text))
-			}
-			continue
+			row.channel.Processing, err = parseProcessing(text)
 		case "start_time":
-			c.Start, _, _ = parseInstant(text)
-			continue
+			row.channel.Start, _, _ = parseInstant(text)
 		case "siting":
 			if _, ok := parseSiting(text); !ok {
 				text = string(SitingFromWords(text))
 			}
+			err = setSiting(&row, text)
 		case "station_latitude", "station_longitude", "event_latitude", "event_longitude":
 			if deg, err := degrees(text); err == nil {
 				text = strconv.FormatFloat(deg, 'g', -1, 64)
 			}
+			fallthrough
+		default:
+			err = catalogueColumns[name].set(&row, text)
 		}
-		if err := catalogueColumns[name].set(&row, text); err != nil {
-			c.warn("line %d: %s %s not understood", s.line, name, found(s.text))
+		if err != nil {
+			row.channel.warn("line %d: %s %s not understood", s.line, name, found(s.text))
 		}
 	}
-	c.Event, c.Station = row.channel.Event, row.channel.Station
+	*c = row.channel
 	c.Event.ID, c.Station.Code, c.Station.Network = row.event, row.station, row.network
-	c.Instrument, c.DistanceKM = row.channel.Instrument, row.channel.DistanceKM
-	c.LowCutHz, c.HighCutHz = row.channel.LowCutHz, row.channel.HighCutHz
-	if row.channel.Siting != "" {
-		c.Siting = row.channel.Siting
-	}
 	l.times(c, v)
 	settlePlaces(c)
 }

@@ -25,12 +25,6 @@ var ownQuantities = []string{
 // pattern that promises one must find it.
 var needed = []string{"unit", "dt_s", "rate_hz", "count", "channels", "scale", "scale_divisor", "peak"}
 
-// textQuantities are those that hold neither numbers nor times.
-var textQuantities = []string{
-	"event", "event_name", "magnitude_type", "station", "station_name", "network", "instrument", "siting", "unit",
-	"direction", "channel", "processing",
-}
-
 // quantityNames returns the quantities that a layout can speak of.
 func quantityNames() []string {
 	names := slices.Clone(ownQuantities)
@@ -90,7 +84,7 @@ func parseProcessing(text string) (Processing, error) {
 			return p, nil
 		}
 	}
-	return "", fmt.Errorf("expected raw, corrected, mean-removed or unknown, found %s", found(text))
+	return ProcessingUnknown, fmt.Errorf("expected raw, corrected, mean-removed or unknown, found %s", found(text))
 }
 
 // wholeNumber reads a count.
@@ -197,8 +191,8 @@ func (l *Layout) take(v *layoutValues, f *layoutFind, line []byte, n int, seen m
 			}
 			continue
 		}
-		if l.numbers.form.comma && !slices.Contains(textQuantities, name) {
-			text = strings.Replace(text, ",", ".", 1)
+		if l.numbers.form.comma {
+			text = withPoint(name, text)
 		}
 		key := quantityKey{name, f.column}
 		if before, ok := v.text[key]; ok && before.text != text {
@@ -208,6 +202,16 @@ func (l *Layout) take(v *layoutValues, f *layoutFind, line []byte, n int, seen m
 		}
 	}
 	return nil
+}
+
+// withPoint returns a number or position that is written with a decimal comma
+// with a point, and any other text as it is.
+func withPoint(name, text string) string {
+	pointed := strings.Replace(text, ",", ".", 1)
+	if _, ok := parseNumber([]byte(pointed)); ok || strings.HasSuffix(name, "itude") {
+		return pointed
+	}
+	return text
 }
 
 // errNoDegrees is the cause where a position is no angle.

@@ -94,7 +94,7 @@ func TestLayoutMistakes(t *testing.T) {
 		{0, "numbers.per_line = 2", `case.toml:6: key numbers is already defined`},
 
 		{0, "[[header]]\npattern = 'x(.)'", `case.toml:7: header.pattern: gives nothing: name a group, as in (?P<dt_s>...), or say gives beside one group`},
-		{0, "[[header]]\npattern = 'x(?P<dt>.)'", `case.toml:7: header.pattern: unknown quantity dt; known are azimuth_deg, channel, channels, count, depth_km, direction, distance_km, dt_s, elevation_m, event, event_latitude, event_longitude, event_name, high_cut_hz, instrument, low_cut_hz, magnitude, magnitude_type, network, origin_time, peak, processing, rate_hz, scale, scale_divisor, siting, start_time, station, station_latitude, station_longitude, station_name, unit, vs30_m_s`},
+		{0, "[[header]]\npattern = 'x(?P<dt>.)'", `case.toml:7: header.pattern: unknown quantity dt; known are ` + strings.Join(quantityNames(), ", ")},
 		{0, "[[header]]\npattern = 'x(?P<station>.)'\ngives = \"event\"", `case.toml:8: header.gives: wants a pattern of one group in parentheses without a name`},
 		{0, "[[header]]\npattern = 'x(?P<peak>.) (?P<peak>.)'", `case.toml:7: header.pattern: two groups named peak`},
 		{0, "[[header]]\ngives = \"peak\"", `case.toml:6: header.pattern: missing: a regular expression`},
