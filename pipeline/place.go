@@ -24,32 +24,79 @@ type placement struct {
 	renamed   map[string]string
 }
 
+// maxVersions is how many versions of one record are held. More are a sign that
+// something else than a version tells the files apart.
+const maxVersions = 20
+
 // place finds the record for a channel of the file. Same event, station and
 // instrument make one record, unless the channel starts at another time (a
-// second trigger), or its direction is taken by another sensor of the same file
-// family; files without identity make one record only within a folder. What
-// does not belong gets a record of its own, whose code says why. A channel that
-// another version of itself has taken the place of is an error.
+// second trigger), its direction is taken by another sensor of the same file
+// family, or it is another version of what the record holds: another format or
+// state of processing, or a direction that is taken already. Files without
+// identity make one record only within a folder. What does not belong gets a record
+// of its own, whose code says why. A channel that states no direction, and another
+// content of a file that is held, are errors.
 func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (placement, error) {
 	code, r, err := findRecord(ctx, tx, res, c)
 	if err != nil {
 		return placement{}, err
 	}
-	p, rival := join(code, r, c)
-	if rival == nil {
-		return p, nil
-	}
-	if c.ChannelCode == "" || rival.SourceFormat != res.source.Format || rival.Channel == c.ChannelCode {
-		return placement{}, takenError(code, *rival, res.source, c)
+	p, rival, err := placeVersion(ctx, tx, code, r, res, c)
+	if err != nil || rival == nil {
+		return p, err
 	}
 	code += "_ch" + ingest.Slug(c.ChannelCode)
 	if r, _, err = tx.FindRecord(ctx, code); err != nil {
 		return placement{}, err
 	}
-	if p, rival = join(code, r, c); rival != nil {
-		return placement{}, takenError(code, *rival, res.source, c)
+	if p, rival, err = placeVersion(ctx, tx, code, r, res, c); rival != nil {
+		err = takenError(code, *rival, res.source, c)
 	}
-	return p, nil
+	return p, err
+}
+
+// placeVersion finds the version of the record to which the channel belongs, the
+// record itself or one of code_v2, code_v3 …. rival is the component of another
+// sensor that has the channel's direction.
+func placeVersion(ctx context.Context, tx *db.Tx, code string, r db.StoredRecord, res result, c *ingest.Channel) (p placement, rival *db.Component, err error) {
+	base := code
+	for n := 2; ; n++ {
+		if isSameVersion(r, res, c) {
+			if p, rival = join(code, r, c); rival == nil {
+				return p, nil, nil
+			}
+			switch {
+			case isAmended(rival, res.source) || hasNoDirection(rival, c) || n > maxVersions:
+				return p, nil, takenError(code, *rival, res.source, c)
+			case c.ChannelCode != "" && rival.Channel != c.ChannelCode:
+				return p, rival, nil
+			}
+		}
+		code = fmt.Sprintf("%s_v%d", base, n)
+		if r, _, err = tx.FindRecord(ctx, code); err != nil {
+			return p, nil, err
+		}
+	}
+}
+
+// isSameVersion reports whether the channel can stand beside what the record holds:
+// both horizontals of a pair have been through the same hands.
+func isSameVersion(r db.StoredRecord, res result, c *ingest.Channel) bool {
+	for _, held := range r.Components {
+		if held.SourceFormat != res.source.Format || held.Processing != string(c.Processing) {
+			return false
+		}
+	}
+	return true
+}
+
+// isAmended reports whether the file holds another content of what is held.
+func isAmended(held *db.Component, src db.Source) bool {
+	return held.SourcePath == src.Path && held.SourceSHA256 != src.SHA256
+}
+
+func hasNoDirection(held *db.Component, c *ingest.Channel) bool {
+	return c.Orientation.Axis == ingest.AxisUnknown || held.Axis == axes[ingest.AxisUnknown]
 }
 
 // findRecord returns the record to which the channel belongs by what it states,
@@ -88,14 +135,13 @@ func folderSlug(res result) string {
 // takenError says what the channel stands in the way of, and what to do.
 func takenError(code string, rival db.Component, src db.Source, c *ingest.Channel) error {
 	switch {
-	case rival.SourcePath == src.Path && rival.SourceSHA256 != src.SHA256:
+	case isAmended(&rival, src):
 		return fmt.Errorf("record %s holds an earlier content of this file: files are not replaced; ingest into a new store (--store) to use the new one", code)
-	case c.Orientation.Axis == ingest.AxisUnknown || rival.Axis == axes[ingest.AxisUnknown]:
+	case hasNoDirection(&rival, c):
 		return fmt.Errorf("record %s holds a component of %s, and one of the two states no direction: name it in the file or by the catalogue's component or azimuth_deg column",
 			code, rival.SourcePath)
 	}
-	return fmt.Errorf("record %s holds this direction already (%s, from %s): another version of the same channel? The store keeps the first; leave one out and ingest into a new store to choose",
-		code, rival.Role, rival.SourcePath)
+	return fmt.Errorf("record %s holds this direction already (%s, from %s), and so do %d versions of it", code, rival.Role, rival.SourcePath, maxVersions)
 }
 
 func startsApart(a, b time.Time) bool {

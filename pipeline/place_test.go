@@ -31,6 +31,11 @@ func at(o ingest.Orientation, code string, start time.Time) ingest.Channel {
 	}
 }
 
+func processed(c ingest.Channel, state ingest.Processing) ingest.Channel {
+	c.Processing = state
+	return c
+}
+
 func towards(c ingest.Channel, azimuth float64) ingest.Channel {
 	c.Orientation = horizontal(azimuth)
 	return c
@@ -54,14 +59,21 @@ func TestPlace(t *testing.T) {
 			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon.Add(40*time.Second)), "b", "E_S_T120040 h1"},
 			{at(horizontal(90), "", noon.Add(40*time.Second)), "c", "E_S_T120040 h2"},
 		}},
-		{"a second version of a channel is refused", []seat{
-			{at(horizontal(0), "1", noon), "a", "E_S h1"}, {at(horizontal(0), "1", noon), "b", "holds this direction already (h1, from a)"},
+		{"versions of a channel are records of their own", []seat{
+			{at(horizontal(0), "1", noon), "a", "E_S h1"}, {at(horizontal(0), "1", noon), "b", "E_S_v2 h1"}, {at(horizontal(0), "1", noon), "c", "E_S_v3 h1"},
+			{at(horizontal(90), "2", noon), "d", "E_S h2"}, {at(horizontal(90), "2", noon), "e", "E_S_v2 h2"},
 		}},
-		{"a second vertical is refused", []seat{
-			{at(vertical, "", none), "a", "E_S v"}, {at(vertical, "", none), "b", "holds this direction already"},
+		{"versions of a vertical", []seat{
+			{at(vertical, "", none), "a", "E_S v"}, {at(vertical, "", none), "b", "E_S_v2 v"},
+		}},
+		{"raw and corrected do not mix", []seat{
+			{processed(at(horizontal(0), "1", noon), ingest.ProcessingRaw), "a", "E_S h1"},
+			{processed(at(horizontal(90), "2", noon), ingest.ProcessingCorrected), "b", "E_S_v2 h2"},
+			{processed(at(horizontal(90), "2", noon), ingest.ProcessingRaw), "c", "E_S h2"},
+			{processed(at(horizontal(0), "1", noon), ingest.ProcessingCorrected), "d", "E_S_v2 h1"},
 		}},
 		{"another sensor in one direction is a record of its own", []seat{
-			{at(horizontal(0), "1", noon), "a", "E_S h1"}, {at(horizontal(0), "9", noon), "b", "E_S_ch9 h1"}, {at(horizontal(0), "9", noon), "c", "holds this direction"},
+			{at(horizontal(0), "1", noon), "a", "E_S h1"}, {at(horizontal(0), "9", noon), "b", "E_S_ch9 h1"}, {at(horizontal(0), "9", noon), "c", "E_S_ch9_v2 h1"},
 		}},
 		{"roles that collide follow the azimuths, whatever came first", []seat{
 			{at(horizontal(40), "", noon), "a", "E_S h1"}, {at(horizontal(320), "", noon), "b", "E_S h2"},

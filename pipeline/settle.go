@@ -6,15 +6,17 @@ import (
 	"slices"
 
 	"swaybook/db"
+	"swaybook/pipeline/likeness"
 )
 
 // settler keeps what is stated and brings what is taken of it up to date, within
 // one transaction. What it takes depends on the statements alone, not on the order
 // in which they came.
 type settler struct {
-	tx      *db.Tx
-	known   map[db.Statement]bool // stated before, source left out
-	touched map[db.Subject]bool
+	tx       *db.Tx
+	known    map[db.Statement]bool // stated before, source left out
+	touched  map[db.Subject]bool
+	comparer likeness.Comparer
 }
 
 func newSettler(tx *db.Tx, known map[db.Statement]bool) *settler {
@@ -172,7 +174,8 @@ func (s *settler) touchRecords(ctx context.Context, of db.Subject, changed bool)
 	return err
 }
 
-// record computes the distances that follow from coordinates, and takes the best.
+// record computes the distances that follow from coordinates, takes the best, and
+// looks for other versions of the record's motions.
 func (s *settler) record(ctx context.Context, id int64) error {
 	subject := db.Subject{Kind: db.SubjectRecord, ID: id}
 	places, err := s.tx.Places(ctx, subject)
@@ -191,5 +194,8 @@ func (s *settler) record(ctx context.Context, id int64) error {
 	if err != nil {
 		return err
 	}
-	return s.tx.SetDistances(ctx, id, distancesOf(statements))
+	if err := s.tx.SetDistances(ctx, id, distancesOf(statements)); err != nil {
+		return err
+	}
+	return s.versions(ctx, id)
 }

@@ -44,6 +44,7 @@ const exportGroup = 16
 // and the selection not empty; see SpectrumQuestion.Ask for the errors.
 func (q ExportQuestion) Write(ctx context.Context, store *db.Store, w io.Writer) (*ExportSummary, error) {
 	selection, err := q.Selection.withDefaults(ComponentAll, SitingAll, storedComponents)
+	selection.IncludeDuplicates = true
 	if err != nil {
 		return nil, err
 	}

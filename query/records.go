@@ -59,6 +59,8 @@ type RecordRow struct {
 	Line             *int     `json:"line"`
 	SHA256           string   `json:"sha256"`
 	Warnings         []string `json:"warnings"`
+	// DuplicateOf is the record from which statistics take the motion instead.
+	DuplicateOf *string `json:"duplicate_of"`
 }
 
 // RecordsAnswer lists components in the order of record code and role.
@@ -72,6 +74,7 @@ type RecordsAnswer struct {
 // written all the same.
 func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnswer, error) {
 	selection, err := q.Selection.withDefaults(ComponentRecorded, SitingAll, storedComponents)
+	selection.IncludeDuplicates = true
 	if err != nil {
 		return nil, err
 	}
@@ -92,6 +95,7 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 
 func rowOf(m *motion) RecordRow {
 	row := recordRow(m.members[0])
+	row.DuplicateOf = orNull(m.versionOf)
 	if m.isRotated() {
 		row.takePair(m)
 	}

@@ -58,7 +58,7 @@ var recordsHeader = []string{
 	"network", "station", "station_name", "station_latitude", "station_longitude", "vs30_m_s", "site_class_en1998", "site_class_nehrp",
 	"distance_km", "epicentral_km", "hypocentral_km", "rupture_km", "jb_km",
 	"instrument", "siting", "component", "channel", "azimuth_deg", "start", "dt_s", "samples", "duration_s",
-	"pga_g", "pgv_m_s", "pgd_m", "unit", "processing", "low_cut_hz", "high_cut_hz", "format", "source", "line", "sha256", "warnings",
+	"pga_g", "pgv_m_s", "pgd_m", "unit", "processing", "low_cut_hz", "high_cut_hz", "format", "source", "line", "sha256", "warnings", "duplicate_of",
 }
 
 func (a *RecordsAnswer) csv() []byte {
@@ -99,7 +99,7 @@ func (r *RecordRow) csv(l *csvLine) {
 	l.words(orEmpty(r.Unit), orEmpty(r.Processing))
 	l.number(orNaN(r.LowCutHz))
 	l.number(orNaN(r.HighCutHz))
-	l.words(r.Format, r.Source, lineText(r.Line), r.SHA256, strings.Join(r.Warnings, "; "))
+	l.words(r.Format, r.Source, lineText(r.Line), r.SHA256, strings.Join(r.Warnings, "; "), orEmpty(r.DuplicateOf))
 	l.end()
 }
 

@@ -16,6 +16,9 @@ type motion struct {
 	members []*db.HeldComponent // one or two, of one record
 	role    string              // the component's role, or the pair's Component
 	rotated *db.Peaks           // of a rotated pair, nil where nobody asked
+	// versionOf is the code of the record from which statistics take the motion
+	// instead, "" for none.
+	versionOf string
 }
 
 func (m *motion) record() string { return m.members[0].Record.Code }
@@ -55,6 +58,9 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	p.hint, p.leftOut = p.hintOf(), map[string]int{}
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
+	if p.duplicates, err = snapshot.Duplicates(ctx); err != nil {
+		return nil, err
+	}
 	if err := p.findRotated(ctx, snapshot, details, held); err != nil {
 		return nil, err
 	}
@@ -98,6 +104,8 @@ type picker struct {
 	// the records of those whose peaks could not be computed.
 	rotated map[string]map[int64]db.Peaks
 	damaged map[int64]bool
+	// duplicates has the code of the record from which the motion is taken instead.
+	duplicates map[db.ComponentKey]string
 }
 
 // take looks at the components of one record. A record counts once as unmet if
@@ -121,6 +129,7 @@ func (p *picker) take(components []db.HeldComponent) error {
 			}
 		case met:
 			unmet = false
+			m.versionOf = p.versionOf(&m)
 			p.motions = append(p.motions, m)
 		}
 	}
@@ -144,12 +153,25 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
+	case !p.selection.IncludeDuplicates && p.versionOf(m) != "":
+		return "another version of the motion is taken", false, nil
 	case p.details&db.DetailPeaks != 0 && m.hasDamagedPeaks():
 		return reasonDamaged, false, nil
 	case unknown != "":
 		return unknown + " unknown", false, nil
 	}
 	return "", true, nil
+}
+
+// versionOf returns the code of the record from which one of the motion's
+// components is taken instead, "" where there is none.
+func (p *picker) versionOf(m *motion) string {
+	for _, c := range m.members {
+		if code := p.duplicates[db.ComponentKey{RecordID: c.RecordID, Role: c.Role}]; code != "" {
+			return code
+		}
+	}
+	return ""
 }
 
 func (m *motion) hasDamagedPeaks() bool {

@@ -171,6 +171,9 @@ type Selection struct {
 	Where     string // "" takes all
 	Component Component
 	Siting    Siting
+	// IncludeDuplicates takes motions too that the store holds in a better version;
+	// lists and export do always.
+	IncludeDuplicates bool
 }
 
 // withDefaults fills in what is empty and checks the rest.

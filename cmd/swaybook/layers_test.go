@@ -16,7 +16,7 @@ import (
 var layers = map[string][]string{
 	"cmd/swaybook":      {"ingest", "pipeline", "pipeline/demo", "db", "query"},                               // wiring, no arithmetic and no SQL
 	"ingest":            {"ingest/miniseed", "ingest/fdsnxml"},                                                // what one reader needs
-	"pipeline":          {"ingest", "db", "pipeline/spectrum", "pipeline/geodesy"},                            // the way in
+	"pipeline":          {"ingest", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness"},       // the way in
 	"pipeline/demo":     {"pipeline/stochastic"},                                                              // invents files, knows nothing of readers
 	"db":                {"migrations"},                                                                       // the only SQL
 	"pipeline/spectrum": {"pipeline/internal/kernel"},                                                         // the loops behind the solver

@@ -39,3 +39,19 @@ ALTER TABLE record ADD COLUMN epicentral_km REAL;
 ALTER TABLE record ADD COLUMN hypocentral_km REAL;
 ALTER TABLE record ADD COLUMN rupture_km REAL;
 ALTER TABLE record ADD COLUMN jb_km REAL;
+
+-- How alike the samples of two components are that may be one motion: of one
+-- event, station and direction, or of equal samples. first_id < second_id.
+CREATE TABLE likeness (
+    first_id    INTEGER NOT NULL REFERENCES component (id),
+    second_id   INTEGER NOT NULL REFERENCES component (id),
+    kind        TEXT NOT NULL CHECK (kind IN ('different', 'similar', 'scaled', 'identical')),
+    scale       REAL NOT NULL,
+    correlation REAL NOT NULL,
+    PRIMARY KEY (first_id, second_id)
+) STRICT, WITHOUT ROWID;
+CREATE INDEX series_digest ON series (sha256);
+
+-- The component that statistics take of the same motion, NULL where that is this.
+ALTER TABLE component ADD COLUMN duplicate_of INTEGER REFERENCES component (id);
+CREATE INDEX component_duplicate ON component (record_id, role) WHERE duplicate_of IS NOT NULL;

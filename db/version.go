@@ -1,0 +1,143 @@
+package db
+
+import (
+	"context"
+	"fmt"
+	"time"
+)
+
+// Version is a component that may be another version of a motion held beside it.
+type Version struct {
+	ComponentID, RecordID int64
+	RecordCode            string
+	Component             // of which Warnings and HeaderPeak are not read
+	Digest                string
+	DuplicateOf           int64 // the component that statistics take, 0 where that is this
+}
+
+// Versions returns the components of the record and of those that may hold the
+// same motions: records of one event at a station of the same code, and records
+// with a component of equal samples. They are ordered by record and role.
+func (t *Tx) Versions(ctx context.Context, recordID int64) ([]Version, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
+			coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
+			f.path, f.sha256, f.format, x.sha256, coalesce(c.duplicate_of, 0)
+		FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
+		WHERE c.record_id IN (
+			SELECT ?1
+			UNION SELECT other.id FROM record this JOIN event e ON e.id = this.event_id JOIN station s ON s.id = this.station_id
+				JOIN station same ON same.code = s.code AND (same.network = s.network OR same.network = '' OR s.network = '')
+				JOIN record other ON other.station_id = same.id JOIN event f ON f.id = other.event_id
+				WHERE this.id = ?1 AND coalesce(f.primary_id, f.id) = coalesce(e.primary_id, e.id)
+			UNION SELECT o.record_id FROM component c JOIN series x ON x.component_id = c.id JOIN series y ON y.sha256 = x.sha256
+				JOIN component o ON o.id = y.component_id WHERE c.record_id = ?1)
+		ORDER BY r.code, c.role`, recordID)
+	if err != nil {
+		return nil, fmt.Errorf("read versions: %w", err)
+	}
+	type row struct {
+		Version
+		start string
+	}
+	found, err := collect(rows, func(v *row) []any {
+		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
+			&v.start, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz,
+			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.DuplicateOf}
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read versions: %w", err)
+	}
+	out := make([]Version, len(found))
+	for i, v := range found {
+		if v.Start, err = parseTime(v.start); err != nil {
+			return nil, err
+		}
+		out[i] = v.Version
+	}
+	return out, nil
+}
+
+// End is the time of the component's last sample, zero where its start is unknown.
+func (v *Version) End() time.Time {
+	if v.Start.IsZero() {
+		return time.Time{}
+	}
+	return v.Start.Add(time.Duration(float64(v.Samples-1) * v.StepS * float64(time.Second)))
+}
+
+// Likeness is how alike the samples of two components are.
+type Likeness struct {
+	FirstID, SecondID  int64 // of components, the lower one first
+	Kind               string
+	Scale, Correlation float64
+}
+
+// LikenessOf returns what is stored of two components; ok is false where nothing is.
+func (t *Tx) LikenessOf(ctx context.Context, firstID, secondID int64) (l Likeness, ok bool, err error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT first_id, second_id, kind, scale, correlation FROM likeness WHERE first_id = ? AND second_id = ?`,
+		min(firstID, secondID), max(firstID, secondID))
+	if err != nil {
+		return l, false, fmt.Errorf("read likeness: %w", err)
+	}
+	found, err := collect(rows, func(l *Likeness) []any { return []any{&l.FirstID, &l.SecondID, &l.Kind, &l.Scale, &l.Correlation} })
+	if err != nil || len(found) == 0 {
+		return l, false, err
+	}
+	return found[0], true, nil
+}
+
+// PutLikeness stores how alike two components are.
+func (t *Tx) PutLikeness(ctx context.Context, l Likeness) error {
+	err := t.exec(ctx, `INSERT INTO likeness (first_id, second_id, kind, scale, correlation) VALUES (?, ?, ?, ?, ?)`,
+		l.FirstID, l.SecondID, l.Kind, l.Scale, l.Correlation)
+	if err != nil {
+		return fmt.Errorf("store likeness: %w", err)
+	}
+	return nil
+}
+
+// SamplesOf returns a component's acceleration in m/s², as Snapshot.Samples does.
+func (t *Tx) SamplesOf(ctx context.Context, v Version) ([]float64, error) {
+	s := Snapshot{tx: t.tx.tx}
+	return s.Samples(ctx, v.RecordID, v.Role)
+}
+
+// ComponentKey is a component's record and role.
+type ComponentKey struct {
+	RecordID int64
+	Role     string
+}
+
+// Duplicates returns, for every component whose motion statistics take from another
+// one, the code of that one's record.
+func (s *Snapshot) Duplicates(ctx context.Context) (map[ComponentKey]string, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role, r.code FROM component c
+		JOIN component o ON o.id = c.duplicate_of JOIN record r ON r.id = o.record_id WHERE c.duplicate_of IS NOT NULL`)
+	if err != nil {
+		return nil, fmt.Errorf("read duplicates: %w", err)
+	}
+	type row struct {
+		ComponentKey
+		code string
+	}
+	found, err := collect(rows, func(v *row) []any { return []any{&v.RecordID, &v.Role, &v.code} })
+	if err != nil {
+		return nil, fmt.Errorf("read duplicates: %w", err)
+	}
+	out := make(map[ComponentKey]string, len(found))
+	for _, v := range found {
+		out[v.ComponentKey] = v.code
+	}
+	return out, nil
+}
+
+// SetDuplicate stores which component statistics take of the same motion, 0 for
+// the component itself.
+func (t *Tx) SetDuplicate(ctx context.Context, componentID, of int64) error {
+	var value any
+	if of != 0 {
+		value = of
+	}
+	_, err := t.changed(ctx, "component", componentID, []assignment{{"duplicate_of", value}})
+	return err
+}
