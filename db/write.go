@@ -99,6 +99,18 @@ func (t *Tx) ForgetRejections(ctx context.Context, path, keep string) error {
 	return nil
 }
 
+// ForgetUnread removes what earlier runs said against the archive at path, and
+// against whatever in it had no content that could be read: all that the next
+// reading says again where it still holds. The paths of what is in it begin with
+// below.
+func (t *Tx) ForgetUnread(ctx context.Context, path, below string) error {
+	err := t.exec(ctx, `DELETE FROM rejection WHERE path = ? OR (sha256 IS NULL AND path > ? AND path < ? || char(0x10FFFF))`, path, below, below)
+	if err != nil {
+		return fmt.Errorf("forget rejections in %s: %w", path, err)
+	}
+	return nil
+}
+
 // RejectionsOf returns what stands against content with this digest: channels
 // of a held file that found no place.
 func (t *Tx) RejectionsOf(ctx context.Context, path, sha256 string) ([]Rejection, error) {

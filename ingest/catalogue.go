@@ -19,7 +19,8 @@ import (
 //
 //	file             files by name, with * ? [] as wildcards; a name with a slash
 //	                 is compared with the whole relative path, one without with
-//	                 the base name
+//	                 the base name. In an archive, the path is that inside, the
+//	                 whole one (sub/archive.zip!dir/file), or that once unpacked
 //	event, station   without file: records by codes
 //	event            all records of an event; its columns are those of the event
 //	station          all records of a station; its columns are those of the station

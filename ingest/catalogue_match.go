@@ -7,6 +7,8 @@ import (
 	"path"
 	"slices"
 	"strings"
+
+	"swaybook/ingest/archive"
 )
 
 // The ranks of rows, weak first.
@@ -22,7 +24,7 @@ func (row *catalogueRow) rank() int {
 	switch {
 	case strings.ContainsAny(row.file, `*?[`):
 		return rankGlob
-	case strings.Contains(row.file, "/"):
+	case strings.ContainsAny(row.file, "/"+archive.Separator):
 		return rankPath
 	case row.file != "":
 		return rankBase
@@ -65,22 +67,44 @@ func compareBool(a, b bool) int {
 
 // fileRows returns the rows whose file fits the relative path, weak first.
 func (c *Catalogue) fileRows(rel string) []*catalogueRow {
-	rel = path.Clean(rel)
-	base := path.Base(rel)
+	base, paths := namesOf(path.Clean(rel))
 	at := slices.Clone(c.exact[base])
-	if rel != base {
-		at = append(at, c.exact[rel]...)
+	for _, p := range paths {
+		at = append(at, c.exact[p]...)
 	}
 	for _, i := range c.globs {
-		name := base
-		if strings.Contains(c.rows[i].file, "/") {
-			name = rel
-		}
-		if ok, _ := path.Match(c.rows[i].file, name); ok { // the pattern is known to be good
+		if matchesFile(c.rows[i].file, base, paths) {
 			at = append(at, i)
 		}
 	}
 	return c.ordered(at)
+}
+
+// matchesFile compares a pattern with the base name, or with the paths if it
+// speaks of folders or archives. The archives' separator may be in a class, too.
+func matchesFile(pattern, base string, paths []string) bool {
+	matches := func(name string) bool {
+		ok, _ := path.Match(pattern, name) // the pattern is known to be good
+		return ok
+	}
+	switch {
+	case strings.Contains(pattern, "/"):
+		return slices.ContainsFunc(paths, matches)
+	case strings.Contains(pattern, archive.Separator):
+		return matches(base) || slices.ContainsFunc(paths, matches)
+	}
+	return matches(base)
+}
+
+// namesOf returns the base name and the paths by which a row may call the file
+// with this relative path. Those of a member of an archive are the whole one, that
+// inside the archive, or each of several, and that which it has once unpacked.
+func namesOf(rel string) (base string, paths []string) {
+	parts := archive.Split(rel)
+	for i := range parts {
+		paths = append(paths, strings.Join(parts[i:], archive.Separator))
+	}
+	return path.Base(parts[len(parts)-1]), append(paths, archive.InPlace(rel))
 }
 
 func (c *Catalogue) ordered(at []int) []*catalogueRow {

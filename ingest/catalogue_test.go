@@ -241,6 +241,25 @@ func TestCatalogueMatching(t *testing.T) {
 	}
 }
 
+// TestCatalogueFilesInArchives has the names by which a row may call a member.
+func TestCatalogueFilesInArchives(t *testing.T) {
+	const deep, shallow = "sub/a.zip!in/b.tar!dir/x.EW", "a.zip!x.EW"
+	for _, tt := range []struct {
+		file          string
+		deep, shallow bool
+	}{
+		{"x.EW", true, true}, {"*.EW", true, true}, {"[!x].EW", true, true}, {"dir/x.EW", true, false}, {"in/b.tar!dir/x.EW", true, false}, {deep, true, false},
+		{shallow, false, true}, {"a.zip!*", false, true}, {"sub/in/dir/x.EW", true, false}, {"sub/*/*/x.EW", true, false}, {"*/*!*/*!dir/*.EW", true, false},
+		{"in/dir/x.EW", false, false}, {"a.zip", false, false}, {"sub/a.zip", false, false}, {"b.tar", false, false}, {"*.zip", false, false},
+	} {
+		for rel, want := range map[string]bool{deep: tt.deep, shallow: tt.shallow} {
+			if _, got := catalogueOf(t, "file,instrument", tt.file+",x").Apply(rel, &Channel{}); got != want {
+				t.Errorf("row for %s matches %s: %v, want %v", tt.file, rel, got, want)
+			}
+		}
+	}
+}
+
 // TestCatalogueKeepsEventCode refines the very things an event's code is made
 // of: the code must stay, and the row must join again.
 func TestCatalogueKeepsEventCode(t *testing.T) {

@@ -11,6 +11,8 @@ import (
 	"path/filepath"
 	"slices"
 	"strings"
+
+	"swaybook/ingest/archive"
 )
 
 // MaxFileSize is the largest file that is read, in bytes. A channel of an hour
@@ -22,6 +24,12 @@ type Found struct {
 	Path string // as it can be opened
 	Rel  string // relative to the path given, with slashes; the base name of a file given itself
 	Err  error  // why a folder, or the target of a link, could not be read
+}
+
+// Member is the member of that name in the file, an archive. Its paths can not be
+// opened; they say where it lies.
+func (f Found) Member(name string) Found {
+	return Found{Path: archive.Join(f.Path, name), Rel: archive.Join(f.Rel, name)}
 }
 
 // Discover lists the files at paths and in all folders below them, sorted by

@@ -2,6 +2,7 @@ package ingest
 
 import (
 	"bytes"
+	"path"
 	"strings"
 )
 
@@ -54,6 +55,22 @@ func isCatalogueHeader(t *Text) bool {
 		}
 	}
 	return known >= 2 && keys >= 1
+}
+
+// SkipMember says why a member of an archive is no record whatever it holds: its
+// name says so, or that of a folder in which it lies, such as Discover passes over.
+// It returns "" for every other path.
+func SkipMember(name string) string {
+	folders, base := path.Split(name)
+	for _, folder := range strings.Split(folders, "/") {
+		switch {
+		case folder == "__MACOSX":
+			return "a file of the operating system"
+		case strings.HasPrefix(folder, "."):
+			return "in a hidden folder"
+		}
+	}
+	return SkipByName(base)
 }
 
 // SkipByName says why a file of this base name is no record whatever it holds:

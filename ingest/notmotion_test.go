@@ -49,3 +49,14 @@ func TestSkipByName(t *testing.T) {
 		}
 	}
 }
+
+func TestSkipMember(t *testing.T) {
+	for name, want := range map[string]string{
+		"__MACOSX/x.v2": "a file of the operating system", "a/__MACOSX/b/x.v2": "a file of the operating system", ".git/x.v2": "in a hidden folder",
+		"a/.b/x.v2": "in a hidden folder", "a/README": "a readme", "a/._x.v2": "a hidden file", "a/x.v2": "", "x.v2": "", "a..b/x.v2": "",
+	} {
+		if got := SkipMember(name); got != want {
+			t.Errorf("SkipMember(%q) = %q, want %q", name, got, want)
+		}
+	}
+}

@@ -5,6 +5,8 @@ import (
 	"encoding/binary"
 	"unicode/utf16"
 	"unicode/utf8"
+
+	"swaybook/ingest/archive"
 )
 
 // MaxLine is the longest line that is read, in bytes. Anything longer is not a
@@ -26,7 +28,7 @@ func NewText(data []byte) (*Text, error) {
 	}
 	for _, p := range packed {
 		if bytes.HasPrefix(data, []byte(p.magic)) {
-			return nil, refuse(0, "", "file is a %s: unpack it first", p.name)
+			return nil, refuse(0, "", "file is %s: unpack it first (read in place are %s)", p.name, archive.Opened)
 		}
 	}
 	data, err := decode(data)
@@ -64,9 +66,10 @@ func (t *Text) Bytes(n int) []byte {
 	return t.lines[n-1]
 }
 
-// packed are the first bytes of archives that people take for records.
+// packed are the first bytes of archives that are not read in place.
 var packed = []struct{ magic, name string }{
-	{"\x1f\x8b", "gzip file"}, {"PK\x03\x04", "zip archive"}, {"BZh", "bzip2 file"}, {"\xfd7zXZ", "xz file"},
+	{"\xfd7zXZ\x00", "an xz file"}, {"7z\xbc\xaf\x27\x1c", "a 7z archive"}, {"Rar!\x1a\x07", "a rar archive"},
+	{"\x28\xb5\x2f\xfd", "a zstd file"}, {"\x1f\x9d", "a file of compress (.Z)"},
 }
 
 func decode(data []byte) ([]byte, error) {

@@ -27,3 +27,16 @@ func TestSplitLines(t *testing.T) {
 		}
 	}
 }
+
+// Archives that are not read in place are refused by name, with those that are.
+func TestNewTextRefusesArchives(t *testing.T) {
+	const rest = ": unpack it first (read in place are .zip, .tar, .tar.gz, .tar.bz2, .gz and .bz2)"
+	for head, want := range map[string]string{
+		"\xfd7zXZ\x00": "an xz file", "7z\xbc\xaf\x27\x1c": "a 7z archive", "Rar!\x1a\x07\x00": "a rar archive", "\x28\xb5\x2f\xfd": "a zstd file",
+		"\x1f\x9d\x90": "a file of compress (.Z)",
+	} {
+		if _, err := NewText([]byte(head + "invented")); err == nil || strings.TrimPrefix(err.Error(), ": ") != "file is "+want+rest {
+			t.Errorf("%q: %v, want %s", head, err, want)
+		}
+	}
+}

@@ -2,6 +2,7 @@ package pipeline
 
 import (
 	"context"
+	"iter"
 	"time"
 
 	"golang.org/x/sync/errgroup"
@@ -30,7 +31,8 @@ type stage[T, R any] struct {
 }
 
 // job is one item on its way; the worker answers on result, which holds one
-// value so that it never waits for the writer.
+// value so that it never waits for the writer. The writer gets the result alone, so
+// that what waits for it keeps no item alive.
 type job[T, R any] struct {
 	item   T
 	result chan R
@@ -39,10 +41,10 @@ type job[T, R any] struct {
 // run returns when all items are stored, at the first error, or when the context
 // ends; the results in the writer's hand are stored even then, since their work
 // is done.
-func (s stage[T, R]) run(ctx context.Context, items []T) error {
+func (s stage[T, R]) run(ctx context.Context, items iter.Seq[T]) error {
 	group, ctx := errgroup.WithContext(ctx)
 	jobs := make(chan job[T, R])
-	queue := make(chan job[T, R], queueLength)
+	queue := make(chan (<-chan R), queueLength)
 	group.Go(func() error { return s.dispatch(ctx, items, queue, jobs) })
 	for range s.workers {
 		group.Go(func() error { return s.work(ctx, jobs) })
@@ -53,20 +55,23 @@ func (s stage[T, R]) run(ctx context.Context, items []T) error {
 
 // dispatch offers the items to the workers, and in the same order to the writer.
 // The bounded queue holds it back where the writer is behind.
-func (s stage[T, R]) dispatch(ctx context.Context, items []T, queue, jobs chan<- job[T, R]) error {
+func (s stage[T, R]) dispatch(ctx context.Context, items iter.Seq[T], queue chan<- (<-chan R), jobs chan<- job[T, R]) error {
 	defer close(queue)
 	defer close(jobs)
-	for _, item := range items {
+	for item := range items {
 		j := job[T, R]{item: item, result: make(chan R, 1)}
-		for _, c := range []chan<- job[T, R]{queue, jobs} {
-			select {
-			case c <- j:
-			case <-ctx.Done():
-				return ctx.Err()
-			}
+		select {
+		case queue <- j.result:
+		case <-ctx.Done():
+			return ctx.Err()
+		}
+		select {
+		case jobs <- j:
+		case <-ctx.Done():
+			return ctx.Err()
 		}
 	}
-	return nil
+	return ctx.Err()
 }
 
 func (s stage[T, R]) work(ctx context.Context, jobs <-chan job[T, R]) error {
@@ -81,7 +86,7 @@ func (s stage[T, R]) work(ctx context.Context, jobs <-chan job[T, R]) error {
 }
 
 // write takes results until the queue ends or the context does.
-func (s stage[T, R]) write(ctx context.Context, queue <-chan job[T, R]) error {
+func (s stage[T, R]) write(ctx context.Context, queue <-chan (<-chan R)) error {
 	for {
 		batch, last, err := s.collect(ctx, queue)
 		if len(batch) > 0 {
@@ -96,21 +101,21 @@ func (s stage[T, R]) write(ctx context.Context, queue <-chan job[T, R]) error {
 }
 
 // collect waits for the results of one batch.
-func (s stage[T, R]) collect(ctx context.Context, queue <-chan job[T, R]) (batch []R, last bool, err error) {
+func (s stage[T, R]) collect(ctx context.Context, queue <-chan (<-chan R)) (batch []R, last bool, err error) {
 	began := s.clock()
 	for weight := 0; weight < batchWeight && s.clock().Sub(began) < batchTime; {
-		var j job[T, R]
+		var result <-chan R
 		select {
 		case next, ok := <-queue:
 			if !ok {
 				return batch, true, nil
 			}
-			j = next
+			result = next
 		case <-ctx.Done():
 			return batch, false, ctx.Err()
 		}
 		select {
-		case res := <-j.result:
+		case res := <-result:
 			batch = append(batch, res)
 			weight += s.weigh(res)
 		case <-ctx.Done():

@@ -9,6 +9,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/ingest/archive"
 )
 
 // startTolerance is how far apart the first samples of one record's components
@@ -121,7 +122,9 @@ func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (
 	return code + c.Start.UTC().Format("_T150405"), db.StoredRecord{}, nil
 }
 
-func folderOf(file string) string { return path.Dir(filepath.ToSlash(file)) }
+// folderOf is the folder of a file, of a member of an archive that in which it
+// would lie unpacked.
+func folderOf(file string) string { return path.Dir(archive.InPlace(filepath.ToSlash(file))) }
 
 // folderSlug names the folder of a file below the one that was named, or that
 // one itself.

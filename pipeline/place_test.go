@@ -106,11 +106,11 @@ func TestPlace(t *testing.T) {
 func placeAll(t *testing.T, seats []seat) {
 	t.Helper()
 	store := newStore(t)
-	run, err := begin(t.Context(), store, withDefaults(options()), map[string]decided{})
+	run, err := begin(t.Context(), store, withDefaults(options()))
 	if err != nil {
 		t.Fatal(err)
 	}
-	w := newWriter(store, run, withDefaults(options()), len(seats))
+	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil, nil))
 	refused := map[string]string{}
 	for i, s := range seats {
 		res := result{

@@ -1,14 +1,10 @@
 package pipeline
 
 import (
-	"cmp"
 	"context"
 	"crypto/sha256"
 	"encoding/hex"
 	"errors"
-	"path"
-	"path/filepath"
-	"strings"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -25,6 +21,9 @@ const (
 	Skipped  Outcome = "skipped"  // recognised, but no ground acceleration
 	Rejected Outcome = "rejected" // could not be read
 )
+
+// opened is what becomes of an archive, which is no file in the counts.
+const opened Outcome = "opened"
 
 // result is one file, read and solved.
 type result struct {
@@ -54,31 +53,24 @@ type solved struct {
 type reader struct {
 	store     Store
 	catalogue *ingest.Catalogue
-	decided   map[string]decided // by absolute path
 	hints     ingest.Hints
 	solvers   solvers
 }
 
-// newReader returns a reader of the files but for those that are decided. It
-// decides the run's own.
-func newReader(store Store, opts Options, done map[string]decided, grid db.Grid) *reader {
-	r := &reader{store: store, catalogue: opts.Catalogue, decided: done, hints: opts.Hints, solvers: newSolvers(grid)}
-	for name, reason := range opts.Own {
-		r.decided[absolute(name)] = decided{reason: reason}
-	}
-	return r
+func newReader(store Store, opts Options, grid db.Grid) *reader {
+	return &reader{store: store, catalogue: opts.Catalogue, hints: opts.Hints, solvers: newSolvers(grid)}
 }
 
 // process reads, recognises, describes and solves one file. What is wrong with
 // the file is part of the result; an error is the store's or the context's.
-func (r *reader) process(ctx context.Context, file ingest.Found) (result, error) {
-	res := result{source: db.Source{Path: file.Path}, rel: file.Rel, stem: stemOf(file.Path)}
-	done := r.decided[absolute(file.Path)]
-	if done.err != nil {
-		return res.rejected(done.err), ctx.Err()
-	}
-	if reason := cmp.Or(done.reason, ingest.SkipByName(path.Base(filepath.ToSlash(file.Path)))); reason != "" {
-		return res.skipped(reason), ctx.Err()
+func (r *reader) process(ctx context.Context, file item) (result, error) {
+	res := result{source: db.Source{Path: file.Path}, rel: file.Rel, stem: file.stem}
+	switch {
+	case file.opened:
+		res.outcome = opened
+		return res, ctx.Err()
+	case file.skip != "":
+		return res.skipped(file.skip), ctx.Err()
 	}
 	data, err := r.read(file, &res)
 	if err != nil {
@@ -91,31 +83,27 @@ func (r *reader) process(ctx context.Context, file ingest.Found) (result, error)
 	if held {
 		return res.held(first), ctx.Err()
 	}
-	return r.parse(file, data, res), ctx.Err()
+	return r.parse(file.Found, data, res), ctx.Err()
 }
 
-// absolute is the path in the one form in which two can be compared; a path
-// that has none stays as it is.
-func absolute(name string) string {
-	if abs, err := filepath.Abs(name); err == nil {
-		return abs
-	}
-	return name
-}
-
-// read loads the file and completes the description of the source.
-func (r *reader) read(file ingest.Found, res *result) ([]byte, error) {
+// read loads the file, unless it was read out of an archive, and completes the
+// description of the source.
+func (r *reader) read(file item, res *result) ([]byte, error) {
 	if file.Err != nil {
 		return nil, file.Err
 	}
-	data, info, err := ingest.Read(file.Path)
-	if err != nil {
-		return nil, err
+	data, modified := file.data, file.modified
+	if !file.isMember {
+		read, info, err := ingest.Read(file.Path)
+		if err != nil {
+			return nil, err
+		}
+		data, modified = read, info.ModTime()
 	}
 	sum := sha256.Sum256(data)
 	res.source.SHA256 = hex.EncodeToString(sum[:])
 	res.source.Size = int64(len(data))
-	res.source.Modified = info.ModTime()
+	res.source.Modified = modified
 	return data, nil
 }
 
@@ -202,9 +190,4 @@ func (res result) held(first string) result {
 func (res result) rejected(err error) result {
 	res.outcome, res.err = Rejected, err
 	return res
-}
-
-func stemOf(file string) string {
-	base := path.Base(filepath.ToSlash(file))
-	return strings.TrimSuffix(base, path.Ext(base))
 }

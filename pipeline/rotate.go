@@ -45,7 +45,7 @@ func (w *writer) rotate(ctx context.Context) error {
 	return stage[db.Pair, rotation]{
 		workers: w.opts.Workers, clock: w.opts.Clock, process: r.process,
 		weigh: func(rotation) int { return 1 }, store: r.storeBatch,
-	}.run(ctx, pairs)
+	}.run(ctx, slices.Values(pairs))
 }
 
 func countRotatable(pairs []db.Pair) (n int) {

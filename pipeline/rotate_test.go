@@ -179,7 +179,7 @@ func stored(t *testing.T, store *db.Store, role string) (out []float64) {
 // However the files come, the store is that of one undisturbed run.
 func TestRotationDoesNotDependOnTheRuns(t *testing.T) {
 	const records = 7
-	dir := archive(t, records)
+	dir := recordFiles(t, records)
 	undisturbed := newStore(t)
 	run(t, undisturbed, options(dir))
 	want := dump(t, undisturbed)
@@ -289,7 +289,7 @@ func TestTurnedPairsAreRotatedAgain(t *testing.T) {
 	}
 	for name, test := range tests {
 		t.Run(name, func(t *testing.T) {
-			dir, store, fresh := archive(t, 2), newStore(t), newStore(t)
+			dir, store, fresh := recordFiles(t, 2), newStore(t), newStore(t)
 			text := strings.ReplaceAll(test.text, "ST", "EV1_ST")
 			run(t, store, options(dir))
 			for i, rotated := range []int{test.rotated, 0} {
@@ -323,7 +323,7 @@ func (m meddling) ReadPair(ctx context.Context, g db.Generation, p db.Pair) (fir
 
 // A pair that became another one while it was rotated is left to the next run.
 func TestAPairThatChangedMeanwhileIsNotStored(t *testing.T) {
-	dir, store := archive(t, 3), newStore(t)
+	dir, store := recordFiles(t, 3), newStore(t)
 	swap := func(p db.Pair) {
 		if !strings.HasSuffix(p.Code, "01") {
 			return
@@ -355,7 +355,7 @@ func TestAStoreThatFailsInTheSecondStage(t *testing.T) {
 		}
 		return nil
 	}}
-	summary, err := Run(t.Context(), store, options(archive(t, 3)))
+	summary, err := Run(t.Context(), store, options(recordFiles(t, 3)))
 	if !errors.Is(err, full) || summary.Stored != 9 || summary.Rotated != 0 {
 		t.Errorf("Run = %+v, %v", summary, err)
 	}

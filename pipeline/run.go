@@ -48,10 +48,11 @@ type Options struct {
 	Rotated func(Rotated)
 }
 
-// Progress is one file done.
+// Progress is one file done, or one member of an archive.
 type Progress struct {
-	Done, Total int
-	File        FileReport
+	Done  int
+	Total int // found so far: it grows as archives are read
+	File  FileReport
 }
 
 // Run ingests the files under opts.Paths into the store, and then rotates the
@@ -66,12 +67,12 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 		return Summary{}, err
 	}
 	done := readMetadata(ctx, files, opts.Hints.Metadata)
-	run, err := begin(ctx, store, opts, done)
+	run, err := begin(ctx, store, opts)
 	if err != nil {
 		return Summary{}, err
 	}
-	w := newWriter(store, run, opts, len(files))
-	err = w.files(ctx, files)
+	w := newWriter(store, run, opts, newSource(files, opts.Own, done))
+	err = w.files(ctx)
 	if err == nil {
 		err = w.rotate(ctx)
 	}
@@ -102,7 +103,7 @@ type state struct {
 }
 
 // begin opens the run's entry in the store and settles the generation.
-func begin(ctx context.Context, store Store, opts Options, done map[string]decided) (state, error) {
+func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	var s state
 	err := store.Update(ctx, func(tx *db.Tx) error {
 		var err error
@@ -115,7 +116,7 @@ func begin(ctx context.Context, store Store, opts Options, done map[string]decid
 	if err != nil {
 		return state{}, err
 	}
-	s.reader = newReader(store, opts, done, s.generation.Grid)
+	s.reader = newReader(store, opts, s.generation.Grid)
 	return s, nil
 }
 

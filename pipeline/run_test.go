@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"math/rand/v2"
 	"os"
+	"path"
 	"path/filepath"
 	"reflect"
 	"runtime"
@@ -16,6 +17,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/ingest/archive"
 )
 
 // testGrid is small, so that the tests are about the pipeline.
@@ -39,9 +41,9 @@ func at2Of(event, station, component string, stepS float64, n int, seed uint64) 
 	return b.String()
 }
 
-// archive writes records of three components for so many stations, with a
+// recordFiles writes records of three components for so many stations, with a
 // damaged file, a readme and a copy among them.
-func archive(t *testing.T, stations int) string {
+func recordFiles(t *testing.T, stations int) string {
 	t.Helper()
 	dir := t.TempDir()
 	for s := range stations {
@@ -105,7 +107,7 @@ func dump(t *testing.T, store *db.Store) []string {
 		code := map[int64]string{}
 		for _, c := range components {
 			code[c.RecordID] = c.Record.Code
-			out = append(out, fmt.Sprint(c.Record.Code, c.Role, c.Label, c.AzimuthDeg == nil, c.Record.Siting, filepath.Base(c.SourcePath), c.PGA, c.PGV, c.PGD))
+			out = append(out, fmt.Sprint(c.Record.Code, c.Role, c.Label, c.AzimuthDeg == nil, c.Record.Siting, nameOf(c.SourcePath), c.PGA, c.PGV, c.PGD))
 		}
 		for d := range v.Generation.Grid.Dampings {
 			for _, role := range []string{db.RoleH1, db.RoleH2, db.RoleV, db.RoleRotD50, db.RoleRotD100} {
@@ -127,8 +129,11 @@ func dump(t *testing.T, store *db.Store) []string {
 	return append(out, measures(t, store)...)
 }
 
+// nameOf is the base name of a source, in an archive or not.
+func nameOf(source string) string { return path.Base(archive.InPlace(filepath.ToSlash(source))) }
+
 func TestRunStoresAndHolds(t *testing.T) {
-	dir, store := archive(t, 4), newStore(t)
+	dir, store := recordFiles(t, 4), newStore(t)
 	got := run(t, store, options(dir))
 	want := Summary{Files: 16, Stored: 12, StoredFiles: 12, Held: 1, Skipped: 1, Rejected: 2, Records: 4, Rotated: 4}
 	if got != want {
@@ -156,7 +161,7 @@ func TestRunStoresAndHolds(t *testing.T) {
 
 // A damaged file that is mended is stored and its rejection forgotten.
 func TestAMendedFileLosesItsRejection(t *testing.T) {
-	dir, store := archive(t, 1), newStore(t)
+	dir, store := recordFiles(t, 1), newStore(t)
 	run(t, store, options(dir))
 	put(t, dir, "bad/cut.AT2", at2("Invented", "Site 99", "000", 7))
 	if got := run(t, store, options(dir)); got.Stored != 1 || got.Rejected != 1 {
@@ -168,7 +173,7 @@ func TestAMendedFileLosesItsRejection(t *testing.T) {
 }
 
 func TestResultsDependNeitherOnWorkersNorOnOrder(t *testing.T) {
-	dir := archive(t, 6)
+	dir := recordFiles(t, 6)
 	var want []string
 	for _, workers := range []int{1, 2, 8} {
 		for _, paths := range [][]string{{dir}, {filepath.Join(dir, "sub"), dir, filepath.Join(dir, "EV1_ST03UP.AT2")}} {
@@ -206,7 +211,7 @@ func (f *failing) Update(ctx context.Context, do func(*db.Tx) error) error {
 // A run that is stopped keeps whole batches, and the next run finishes the
 // rest, to the same store as an undisturbed one.
 func TestAStoppedRunIsFinishedByTheNext(t *testing.T) {
-	dir := archive(t, 60)
+	dir := recordFiles(t, 60)
 	undisturbed := newStore(t)
 	run(t, undisturbed, options(dir))
 
@@ -246,7 +251,7 @@ func componentsOf(t *testing.T, store *db.Store) (out []db.HeldComponent) {
 // A store that fails ends the run: no file is read long after it.
 func TestAFailingStoreStopsTheRun(t *testing.T) {
 	full := errors.New("disk full")
-	dir := archive(t, 100)
+	dir := recordFiles(t, 100)
 	store := &failing{Store: newStore(t), before: func(n int) error {
 		if n > 1 { // the first opens the run
 			return full
@@ -275,7 +280,7 @@ func TestAFailingStoreStopsTheRun(t *testing.T) {
 }
 
 func TestTheGridIsFixedByTheFirstRun(t *testing.T) {
-	dir, store := archive(t, 1), newStore(t)
+	dir, store := recordFiles(t, 1), newStore(t)
 	run(t, store, options(dir))
 	opts := options(dir)
 	opts.Grid.PeriodsS = []float64{0.3}
@@ -309,7 +314,7 @@ func catalogue(t *testing.T, text string) *ingest.Catalogue {
 // What the catalogue states replaces what a header or an earlier run stored, at
 // once: a second run with the same catalogue changes nothing.
 func TestTheCatalogueOverridesWhatIsStored(t *testing.T) {
-	dir, store := archive(t, 1), newStore(t)
+	dir, store := recordFiles(t, 1), newStore(t)
 	opts := options(dir)
 	opts.Catalogue = catalogue(t, "event,magnitude,magnitude_type\ninvented-20260312,5.0,ML\n")
 	run(t, store, opts)
@@ -336,7 +341,7 @@ func TestTheCatalogueOverridesWhatIsStored(t *testing.T) {
 func TestTheCatalogueDescribesTwins(t *testing.T) {
 	text := "file,magnitude\ncopy.txt,7.7\n"
 	for _, runs := range []int{1, 2} {
-		dir, store := archive(t, 1), newStore(t)
+		dir, store := recordFiles(t, 1), newStore(t)
 		for range runs {
 			opts := options(dir)
 			opts.Catalogue = catalogue(t, text)
@@ -350,7 +355,7 @@ func TestTheCatalogueDescribesTwins(t *testing.T) {
 
 // A catalogue that comes later still describes what is held.
 func TestTheCatalogueDescribesHeldRecords(t *testing.T) {
-	dir, store := archive(t, 2), newStore(t)
+	dir, store := recordFiles(t, 2), newStore(t)
 	run(t, store, options(dir))
 	opts := options(dir)
 	opts.Catalogue = catalogue(t, "event,station,magnitude,distance_km,vs30_m_s,siting,instrument,low_cut_hz\n"+

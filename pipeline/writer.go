@@ -7,6 +7,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/ingest/archive"
 )
 
 // writer stores results in the order of the files, batch by batch. It runs in one
@@ -15,36 +16,43 @@ type writer struct {
 	store   Store
 	run     state
 	opts    Options
-	total   int
+	source  *source
 	done    int
 	summary Summary
 	settler *settler              // of the batch in hand
 	known   map[db.Statement]bool // what settlers know to be stated
 }
 
-func newWriter(store Store, run state, opts Options, total int) *writer {
-	return &writer{store: store, run: run, opts: opts, total: total, known: map[db.Statement]bool{}}
+func newWriter(store Store, run state, opts Options, src *source) *writer {
+	return &writer{store: store, run: run, opts: opts, source: src, known: map[db.Statement]bool{}}
 }
 
 // files brings the files to the store.
-func (w *writer) files(ctx context.Context, files []ingest.Found) error {
-	return stage[ingest.Found, result]{
+func (w *writer) files(ctx context.Context) error {
+	return stage[item, result]{
 		workers: w.opts.Workers, clock: w.opts.Clock, process: w.run.reader.process,
 		weigh: func(res result) int { return max(1, len(res.channels)) }, store: w.storeBatch,
-	}.run(ctx, files)
+	}.run(ctx, w.source.items(ctx))
 }
 
 // storeBatch stores the results in one transaction and reports them once it is
 // committed.
 func (w *writer) storeBatch(ctx context.Context, batch []result) error {
-	reports := make([]FileReport, len(batch))
+	reports := make([]FileReport, 0, len(batch))
 	err := w.store.Update(ctx, func(tx *db.Tx) error {
 		w.settler = newSettler(tx, w.known)
-		for i, res := range batch {
-			var err error
-			if reports[i], err = w.storeFile(ctx, tx, res); err != nil {
+		for _, res := range batch {
+			if res.outcome == opened {
+				if err := tx.ForgetUnread(ctx, res.source.Path, archive.Join(res.source.Path, "")); err != nil {
+					return err
+				}
+				continue
+			}
+			report, err := w.storeFile(ctx, tx, res)
+			if err != nil {
 				return err
 			}
+			reports = append(reports, report)
 		}
 		return w.settler.settle(ctx)
 	})
@@ -54,7 +62,7 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 	for _, report := range reports {
 		w.done++
 		w.summary.add(report)
-		w.opts.Progress(Progress{Done: w.done, Total: w.total, File: report})
+		w.opts.Progress(Progress{Done: w.done, Total: int(w.source.total.Load()), File: report})
 	}
 	return nil
 }

@@ -16,11 +16,11 @@ import (
 func BenchmarkWriter(b *testing.B) {
 	const files = 2 * batchWeight
 	dir := b.TempDir()
-	var found []ingest.Found
+	var found []item
 	for i := range files {
 		name := fmt.Sprintf("%03d.AT2", i)
 		put(b, dir, name, at2Of("Invented", fmt.Sprintf("Site %d", i/3), []string{"000", "090", "UP"}[i%3], 0.005, 8000, uint64(i)))
-		found = append(found, ingest.Found{Path: filepath.Join(dir, name), Rel: name})
+		found = append(found, item{Found: ingest.Found{Path: filepath.Join(dir, name), Rel: name}, stem: stemOf(name)})
 	}
 	opts := withDefaults(Options{Program: "benchmark", Started: time.Now(), Clock: time.Now})
 	var results []result
@@ -30,7 +30,7 @@ func BenchmarkWriter(b *testing.B) {
 		if err != nil {
 			b.Fatal(err)
 		}
-		run, err := begin(b.Context(), store, opts, map[string]decided{})
+		run, err := begin(b.Context(), store, opts)
 		if err != nil {
 			b.Fatal(err)
 		}
@@ -41,7 +41,7 @@ func BenchmarkWriter(b *testing.B) {
 			}
 			results = append(results, res)
 		}
-		w := newWriter(store, run, opts, files)
+		w := newWriter(store, run, opts, newSource(nil, nil, nil))
 		b.StartTimer()
 		for at := 0; at < files; at += batchWeight {
 			if err := w.storeBatch(context.WithoutCancel(b.Context()), results[at:at+batchWeight]); err != nil {

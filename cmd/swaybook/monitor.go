@@ -149,11 +149,15 @@ var particulars = regexp.MustCompile(`"[^"]*"|\brecord \S+|\bfrom \S+?\)|[-+]?[0
 func general(cause string) string { return particulars.ReplaceAllString(cause, "…") }
 
 func (m *monitor) showBar(doing, things string, done, total int) {
-	if m.bar == nil {
+	// A bar that was full stays so; where more has come to light, another goes on.
+	if m.bar == nil || m.bar.IsFinished() {
 		m.bar = progressbar.NewOptions(total,
 			progressbar.OptionSetWriter(m.stderr), progressbar.OptionSetDescription(doing), progressbar.OptionShowCount(),
 			progressbar.OptionShowIts(), progressbar.OptionSetItsString(things), progressbar.OptionSetPredictTime(true),
 			progressbar.OptionThrottle(100*time.Millisecond), progressbar.OptionClearOnFinish(), progressbar.OptionFullWidth())
+	}
+	if m.bar.GetMax() != total {
+		m.bar.ChangeMax(total)
 	}
 	m.bar.Set(done) // the bar's own errors are a terminal that went away
 }

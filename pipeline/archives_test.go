@@ -1,0 +1,291 @@
+package pipeline
+
+import (
+	"archive/tar"
+	"archive/zip"
+	"bytes"
+	"compress/gzip"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"slices"
+	"strings"
+	"testing"
+
+	"swaybook/ingest"
+)
+
+// packed is a file to put into an archive.
+type packed struct{ name, content string }
+
+func zipOf(t testing.TB, files ...packed) string {
+	t.Helper()
+	var b bytes.Buffer
+	z := zip.NewWriter(&b)
+	for _, f := range files {
+		w, err := z.Create(f.name)
+		if err == nil {
+			_, err = io.WriteString(w, f.content)
+		}
+		if err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := z.Close(); err != nil {
+		t.Fatal(err)
+	}
+	return b.String()
+}
+
+func tarOf(t testing.TB, files ...packed) string {
+	t.Helper()
+	var b bytes.Buffer
+	w := tar.NewWriter(&b)
+	for _, f := range files {
+		err := w.WriteHeader(&tar.Header{Name: f.name, Typeflag: tar.TypeReg, Size: int64(len(f.content)), Mode: 0o644})
+		if err == nil {
+			_, err = io.WriteString(w, f.content)
+		}
+		if err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := w.Close(); err != nil {
+		t.Fatal(err)
+	}
+	return b.String()
+}
+
+func gzipOf(t testing.TB, content string) string {
+	t.Helper()
+	var b bytes.Buffer
+	w := gzip.NewWriter(&b)
+	_, err := io.WriteString(w, content)
+	if err := errors.Join(err, w.Close()); err != nil {
+		t.Fatal(err)
+	}
+	return b.String()
+}
+
+// anonymous is an invented record whose file says nothing of event and station.
+func anonymous(seed int) string {
+	var b strings.Builder
+	b.WriteString("time(s),acc(g)\n")
+	for i := range 200 {
+		fmt.Fprintf(&b, "%.2f,%.4f\n", float64(i)/100, float64((i*seed)%97-48)/1000)
+	}
+	return b.String()
+}
+
+// unpackedTree is records in folders, with and without identity, some of equal
+// names.
+func unpackedTree() []packed {
+	return []packed{
+		{"EV1/run1.csv", anonymous(7)}, {"EV1/ST0000.AT2", at2("Invented", "Site 00", "000", 1)}, {"EV1/ST0090.AT2", at2("Invented", "Site 00", "090", 2)},
+		{"EV2/run1.csv", anonymous(11)}, {"EV2/README.txt", "Invented."}, {"EV2/sub/run1.csv", anonymous(13)},
+		{"EV3/deep/run1.csv", anonymous(17)}, {"EV3/deep/run2.csv", anonymous(19)},
+		{"EV4/ST01UP.AT2", at2("Invented", "Site 01", "UP", 3)}, {"EV4/ST01000.AT2", at2("Invented", "Site 01", "000", 4)},
+		{"EV5/run1.csv", anonymous(23)}, {"z_N.csv", anonymous(29)}, {"z_E.csv", anonymous(31)},
+	}
+}
+
+// mixedTree is the same with archives where files or folders were.
+func mixedTree(t testing.TB) []packed {
+	u := unpackedTree()
+	return []packed{
+		{"EV1/all.tar", tarOf(t, packed{"run1.csv", u[0].content}, packed{"ST0000.AT2", u[1].content}, packed{"ST0090.AT2", u[2].content})},
+		{"EV2.tar.gz", gzipOf(t, tarOf(t, u[3:6]...))},
+		{"EV3/deep/run1.csv.gz", gzipOf(t, u[6].content)}, u[7],
+		{"EV4.zip", zipOf(t, u[9], u[8])}, {"EV5/" + "one.zip", zipOf(t, packed{"run1.csv", u[10].content})}, u[11], u[12],
+	}
+}
+
+func putAll(t testing.TB, dir string, files []packed) {
+	t.Helper()
+	for _, f := range files {
+		put(t, dir, f.name, f.content)
+	}
+}
+
+// However records are packed, what is stored of them is the same, under the same
+// codes: unpacked, with archives among the files, and all of that in one zip.
+func TestArchivesGiveWhatTheirFilesGive(t *testing.T) {
+	unpacked, mixed, zipped, tarred := t.TempDir(), t.TempDir(), t.TempDir(), t.TempDir()
+	putAll(t, unpacked, unpackedTree())
+	putAll(t, mixed, mixedTree(t))
+	shuffled := mixedTree(t)
+	slices.Reverse(shuffled)
+	put(t, zipped, "all.zip", zipOf(t, shuffled...))
+	put(t, tarred, "all.tgz", gzipOf(t, tarOf(t, mixedTree(t)...)))
+
+	store := newStore(t)
+	want := Summary{Files: 13, Stored: 12, StoredFiles: 12, Skipped: 1, Records: 9, Rotated: 2}
+	if got := run(t, store, options(unpacked)); got != want {
+		t.Errorf("unpacked: %+v, want %+v", got, want)
+	}
+	stored := slices.Sorted(slices.Values(dump(t, store))) // the spectra lie in the order of reading
+	for _, dir := range []string{mixed, zipped, tarred} {
+		for _, workers := range []int{1, 3} {
+			other, opts := newStore(t), options(dir)
+			opts.Workers = workers
+			if got := run(t, other, opts); got != want {
+				t.Errorf("%s: %+v, want %+v", dir, got, want)
+			}
+			if got := slices.Sorted(slices.Values(dump(t, other))); !slices.Equal(got, stored) {
+				t.Errorf("%s: the store differs\n%s\nwant\n%s", dir, strings.Join(got, "\n"), strings.Join(stored, "\n"))
+			}
+		}
+		// A file in an archive and the same unpacked are one.
+		if got := run(t, store, options(dir)); got.Held != 12 || got.Stored != 0 || got.Files != 13 {
+			t.Errorf("%s, into the store of the unpacked files: %+v", dir, got)
+		}
+	}
+}
+
+// Sources, rejections and skipped files say in which archive they lie.
+func TestPathsInArchives(t *testing.T) {
+	dir, store := t.TempDir(), newStore(t)
+	cut := tarOf(t, packed{"good.csv", anonymous(5)}, packed{"cut.csv", anonymous(6)})
+	put(t, dir, "a.zip", zipOf(t, packed{"__MACOSX/._x.csv", "\x00"}, packed{".git/x.csv", "x"}, packed{"README", "x"}, packed{"d/bad.txt", "no record"},
+		packed{"i.tgz", gzipOf(t, tarOf(t, packed{"x.csv", anonymous(3)}))}, packed{"deep.zip", zipOf(t, packed{"b.zip", zipOf(t, packed{"x", "x"})})}))
+	put(t, dir, "b.tar", cut[:2*512+len(anonymous(5))+512])
+	put(t, dir, "c.csv.gz", gzipOf(t, anonymous(4)))
+	put(t, dir, "d.zip", zipOf(t))
+	put(t, dir, "e.csv", anonymous(8))
+	put(t, dir, "f.xlsx", zipOf(t, packed{"[Content_Types].xml", "<?xml"}))
+	var got []string
+	opts := options(dir)
+	opts.Progress = func(p Progress) {
+		rel, err := filepath.Rel(dir, p.File.Path)
+		if err != nil {
+			t.Error(err)
+		}
+		line := filepath.ToSlash(rel) + " " + string(p.File.Outcome) + " " + p.File.Reason
+		for _, c := range p.File.Causes {
+			line += fmt.Sprintf("%d: %s", c.Line, c.Text)
+		}
+		got = append(got, line)
+		if p.Done != len(got) || p.Total < p.Done {
+			t.Errorf("%s: %d of %d, want %d", rel, p.Done, p.Total, len(got))
+		}
+		if p.File.Path == filepath.Join(dir, "f.xlsx") && p.Done != p.Total {
+			t.Errorf("%d of %d at the end", p.Done, p.Total)
+		}
+	}
+	run(t, store, opts)
+	want := []string{
+		"a.zip!.git/x.csv skipped in a hidden folder", "a.zip!README skipped a readme", "a.zip!__MACOSX/._x.csv skipped a file of the operating system",
+		`a.zip!d/bad.txt rejected 1: unknown format: found "no record"; no reader recognises this content`,
+		"a.zip!deep.zip!b.zip rejected 0: an archive too deep inside others: unpack the outermost", "a.zip!i.tgz!x.csv stored ",
+		"b.tar!good.csv stored ", "b.tar rejected 0: cut.csv: the data end in the middle: truncated?",
+		"c.csv.gz!c.csv stored ", "d.zip rejected 0: the archive holds no files", "e.csv stored ", "f.xlsx skipped an office document, not a record",
+	}
+	if !slices.Equal(got, want) {
+		t.Errorf("got\n%s\nwant\n%s", strings.Join(got, "\n"), strings.Join(want, "\n"))
+	}
+	for _, c := range componentsOf(t, store) {
+		if base := filepath.Base(c.SourcePath); !slices.Contains([]string{"a.zip!i.tgz!x.csv", "b.tar!good.csv", "c.csv.gz!c.csv", "e.csv"}, base) {
+			t.Errorf("source %s", c.SourcePath)
+		}
+	}
+}
+
+// An archive that was mended loses what was said against it and in it, and no
+// other does.
+func TestAMendedArchiveLosesItsRejections(t *testing.T) {
+	dir, store := t.TempDir(), newStore(t)
+	inner := tarOf(t, packed{"x.csv", anonymous(3)})
+	put(t, dir, "a.zip", zipOf(t, packed{"i.tar", inner[:700]}, packed{"bad.txt", "no record"}))
+	put(t, dir, "a.zip2.tar", inner[:700])
+	causes := func() (out []string) {
+		rejections, err := store.Rejections(t.Context())
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, r := range rejections {
+			out = append(out, filepath.Base(r.Path))
+		}
+		return out
+	}
+	for range 2 {
+		if got := run(t, store, options(dir)); got.Rejected != 3 || got.Files != 3 {
+			t.Errorf("run = %+v", got)
+		}
+		if got := causes(); !slices.Equal(got, []string{"a.zip!bad.txt", "a.zip!i.tar", "a.zip2.tar"}) {
+			t.Errorf("rejections = %v", got)
+		}
+	}
+	put(t, dir, "a.zip", zipOf(t, packed{"i.tar", inner}))
+	if got := run(t, store, options(filepath.Join(dir, "a.zip"))); got.Rejected != 0 || got.Stored != 1 || got.Files != 1 {
+		t.Errorf("run = %+v", got)
+	}
+	if got := causes(); !slices.Equal(got, []string{"a.zip!bad.txt", "a.zip2.tar"}) {
+		t.Errorf("rejections = %v", got)
+	}
+}
+
+// A stop within an archive keeps whole batches; the next run reads the rest.
+func TestAStopWithinAnArchive(t *testing.T) {
+	var files []packed
+	for i := range 200 {
+		files = append(files, packed{fmt.Sprintf("ST%03d000.AT2", i), at2("Invented", fmt.Sprintf("Site %03d", i), "000", uint64(i))})
+	}
+	dir, store := t.TempDir(), newStore(t)
+	put(t, dir, "a.tar.gz", gzipOf(t, tarOf(t, files...)))
+	ctx, cancel := context.WithCancel(t.Context())
+	defer cancel()
+	opts := options(dir)
+	opts.Progress = func(Progress) { cancel() }
+	summary, err := Run(ctx, store, opts)
+	if !errors.Is(err, context.Canceled) || summary.Stored == 0 || summary.Stored >= len(files) || summary.Rejected != 0 {
+		t.Fatalf("Run = %+v, %v", summary, err)
+	}
+	if got := run(t, store, options(dir)); got.Stored+got.Held != len(files) || got.Held < summary.Stored {
+		t.Errorf("the next run: %+v", got)
+	}
+}
+
+// The run's own files are not opened, and what cannot be read is no archive.
+func TestSourceOpensWhatItMay(t *testing.T) {
+	dir := t.TempDir()
+	put(t, dir, "own.zip", zipOf(t, packed{"x", "x"}))
+	put(t, dir, "b.zip", zipOf(t, packed{"x", "x"}))
+	own, gone := filepath.Join(dir, "own.zip"), filepath.Join(dir, "gone.zip")
+	src := newSource([]ingest.Found{{Path: own, Rel: "own.zip"}, {Path: gone, Rel: "gone.zip"}, {Path: filepath.Join(dir, "b.zip"), Rel: "b.zip"}}, map[string]string{own: "own"}, nil)
+	var got []string
+	for it := range src.items(t.Context()) {
+		got = append(got, fmt.Sprintf("%s %s %s %s %t", it.Rel, it.stem, it.skip, it.data, it.opened))
+		if it.isMember && it.modified.IsZero() {
+			t.Error("a member without a time does not have that of its archive")
+		}
+	}
+	want := []string{"own.zip own own  false", "gone.zip gone   false", "b.zip    true", "b.zip!x x  x false"}
+	if !slices.Equal(got, want) {
+		t.Errorf("items = %q, want %q", got, want)
+	}
+	if _, err := os.Stat(gone); err == nil {
+		t.Fatal("the file is there")
+	}
+	ctx, cancel := context.WithCancel(t.Context())
+	cancel()
+	for range src.items(ctx) {
+		t.Error("an item after the end of the context")
+	}
+}
+
+// The catalogue describes members as it describes files.
+func TestTheCatalogueDescribesMembers(t *testing.T) {
+	for _, pattern := range []string{"x.csv", "*.csv", "d/x.csv", "i.tar!d/x.csv", "sub/a.zip!i.tar!d/x.csv", "sub/d/x.csv", "sub/*!*!d/*"} {
+		dir, store := t.TempDir(), newStore(t)
+		put(t, dir, "sub/a.zip", zipOf(t, packed{"i.tar", tarOf(t, packed{"d/x.csv", anonymous(3)})}))
+		opts := options(dir)
+		opts.Catalogue = catalogue(t, "file,distance_km\n"+pattern+",7.7\n")
+		run(t, store, opts)
+		if c := componentsOf(t, store); len(c) != 1 || c[0].Record.Distances.BestKM == nil || *c[0].Record.Distances.BestKM != 7.7 {
+			t.Errorf("%s: %+v", pattern, c)
+		}
+	}
+}
