@@ -5,7 +5,8 @@
 // Promises: a file is recognised by its content, never by its name; a unit is
 // never guessed; what a header does not say stays unknown; every refusal names
 // file, line and cause. The package keeps no state and opens no files but
-// those that Discover lists and Read reads.
+// those that Discover lists and Read reads. Package archive reads those inside
+// archives.
 //
 // Start at Format, the interface of a reader, and Formats, the list of those
 // there are. Channel is what a reader returns; RecordID and AssignRoles say how

@@ -1,6 +1,7 @@
-// Package pipeline fills the store: it finds record files, reads and solves
-// them concurrently and hands the results, in the order of the paths, to one
-// writer; then it rotates the horizontals of every record that lacks that.
+// Package pipeline fills the store: it finds record files, in archives too,
+// reads and solves them concurrently and hands the results, in the order of the
+// paths, to one writer; then it rotates the horizontals of every record that
+// lacks that.
 //
 // Promises: one bad file never stops the batch; results depend neither on the
 // number of workers nor on the order in which files are named; what waits is

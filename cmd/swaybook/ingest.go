@@ -24,6 +24,7 @@ func ingestCommand() *cli.Command {
 		Usage:     "read record files, compute their spectra, store both",
 		ArgsUsage: "PATH...",
 		Description: "Reads files and folders (with all that is below them). Files are recognised by their content.\n" +
+			"Archives (zip, tar, tar.gz, gz and the like) are read where they lie.\n" +
 			"Then the horizontals of every record that has two are rotated, unless that was done before.\n" +
 			"Running it again is harmless: content that the store holds is not read twice, and a run that was\n" +
 			"stopped is finished by the next one.",

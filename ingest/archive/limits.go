@@ -22,7 +22,7 @@ type Limits struct {
 // DefaultLimits are those of a run, for members up to so many bytes. Files of
 // numbers in text shrink to a third or a tenth, so 64 is far beyond what an honest
 // archive needs; with it, memory is bounded by the file's size. The total bounds
-// the time, to some minutes. A directory takes about eight times its size in
+// the time, to some minutes. A directory takes about five times its size in
 // memory.
 func DefaultLimits(member int64) Limits {
 	return Limits{Member: member, Total: 64 << 30, Ratio: 64, Free: 1 << 20, Count: 100_000, Directory: 32 << 20, Depth: 2}
