@@ -32,7 +32,7 @@ func BenchmarkSource(b *testing.B) {
 			b.ReportAllocs()
 			bytes := 0
 			for b.Loop() {
-				for it := range newSource(found, nil).items(b.Context()) {
+				for it := range newSource(found, nil, nil).items(b.Context()) {
 					bytes += len(it.data)
 				}
 			}
