@@ -17,6 +17,8 @@ func notMotion(t *Text) error {
 		return refuse(n, "", "an HTML page, not a record: a download that went wrong?")
 	case bytes.HasPrefix(line, []byte("<?xml")):
 		return &NotMotionError{"an XML document, not a record"}
+	case bytes.HasPrefix(line, []byte("{\"")) || string(line) == "{":
+		return &NotMotionError{"a JSON document, not a record; what it says of records belongs in the catalogue"}
 	case bytes.HasPrefix(line, []byte("record,component,damping,period_s")):
 		return &NotMotionError{"spectral ordinates exported as a table, not a time series"}
 	case isCatalogueHeader(t):

@@ -16,6 +16,8 @@ func TestNotMotion(t *testing.T) {
 		{"page", "\n<!DOCTYPE HTML><html>", "", "case:2: an HTML page, not a record: a download that went wrong?"},
 		{"page in XML", "<?xml version='1.0'?>\n<html xmlns='x'>", "", "case:1: an HTML page, not a record: a download that went wrong?"},
 		{"XML", "<?xml version='1.0'?>\n<quake/>", "an XML document, not a record", ""},
+		{"JSON", "{\n  \"unit\": \"g\"\n}\n", "a JSON document, not a record; what it says of records belongs in the catalogue", ""},
+		{"JSON in one line", "{\"unit\": \"g\"}\n", "a JSON document, not a record; what it says of records belongs in the catalogue", ""},
 		{"columns", "time,acc\n0,1\n", "", ""},
 		{"one known name", "station\nABC\n", "", ""},
 		{"no key", "magnitude,depth_km\n5,10\n", "", ""},

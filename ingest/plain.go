@@ -63,19 +63,14 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 	if err != nil {
 		return nil, err
 	}
+	if err := head.checkRepeats(); err != nil {
+		return nil, err
+	}
 	form, err := detectForm(t, head.first)
 	if err != nil {
 		return nil, err
 	}
-	columns, err := head.columns(form)
-	if err != nil {
-		return nil, err
-	}
-	rows, err := readRows(t, head.first, form)
-	if err != nil {
-		return nil, err
-	}
-	columns, err = settleColumns(columns, rows)
+	columns, rows, err := head.read(t, form)
 	if err != nil {
 		return nil, err
 	}
@@ -87,6 +82,23 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 		return nil, err
 	}
 	return head.channels(columns, rows, step, hints)
+}
+
+// read reads the numbers and settles what the columns hold.
+func (h *plainHead) read(t *Text, form numberForm) ([]plainColumn, *plainRows, error) {
+	rows, err := h.wrapped(t, form)
+	if err != nil || rows != nil {
+		return []plainColumn{{kind: columnValue}}, rows, err
+	}
+	columns, err := h.columns(form)
+	if err != nil {
+		return nil, nil, err
+	}
+	if rows, err = readRows(t, h.first, form); err != nil {
+		return nil, nil, err
+	}
+	columns, err = settleColumns(columns, rows)
+	return columns, rows, err
 }
 
 // channels makes a channel of each value column.
@@ -120,8 +132,12 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		}
 		warnClipping(&c, clippedRun+1)
 		warnOffset(&c)
+		warnLength(&c)
 		scale(c.Acceleration, unit.MPS2)
 		out = append(out, c)
+	}
+	if len(out) == 1 {
+		h.setPeak(&out[0])
 	}
 	return out, nil
 }
@@ -152,7 +168,7 @@ func warnOffset(c *Channel) {
 
 // unit joins what the column's name and the comments say with the hints.
 func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
-	comment := h.stated("unit", "units")
+	comment := h.stated(unitKeys...)
 	if col.unit.text == "" {
 		return chooseUnit(comment, hints)
 	}
@@ -177,12 +193,17 @@ func (h *plainHead) step(columns []plainColumn, rows *plainRows, hints Hints) (f
 			continue
 		}
 		timed, err := timeStep(rows.values[i], rows.resolution[i], rows.line)
-		if err != nil {
+		switch {
+		case err != nil && rows.values[i][0] == float64(len(rows.line)-1):
+			return 0, refuse(rows.line[0], "samples", "%s: a count and a time step before the values? remove the line and give the step with --dt", found(rows.head))
+		case err != nil:
 			return 0, err
-		}
-		if col.scale != 0 {
+		case col.scale != 0:
 			timed = nearlyNice(timed * col.scale)
-		} else {
+		default:
+			if err := timeUnit(timed, rows.line[0]); err != nil {
+				return 0, err
+			}
 			timed = nearlyNice(timed)
 		}
 		if stated == 0 {

@@ -28,17 +28,15 @@ type plainColumn struct {
 // column is the values, and two wait for settleColumns; three and more are
 // refused, as is a name that nobody knows among them.
 func (h *plainHead) columns(form numberForm) ([]plainColumn, error) {
-	columns, err := h.named(form)
+	columns, known, err := h.named(form)
 	if err != nil {
 		return nil, err
 	}
-	known := slices.ContainsFunc(columns, func(c plainColumn) bool { return c.kind != columnUnknown })
 	if columns == nil || !known && (!h.sure || form.fields <= 2) {
 		columns = make([]plainColumn, form.fields)
-		known = false
 	}
 	if form.fields > 2 && !known {
-		return nil, refuse(h.first, "samples", "%d values a line and no names over them: a wrapped series is not read, write one value a line or name the columns", form.fields)
+		return nil, refuse(h.first, "samples", "%d values a line and no names over them: a wrapped series needs a count (# npts = N) or a layout, with --layout; columns need names", form.fields)
 	}
 	if form.fields == 1 && columns[0].kind == columnUnknown {
 		columns[0].kind = columnValue
@@ -51,9 +49,26 @@ func (h *plainHead) columns(form numberForm) ([]plainColumn, error) {
 	return columns, nil
 }
 
-// named reads the line over the numbers as names, nil where it does not hold
+// named reads the line over the numbers as names and reports whether they mean
+// something. The columns are nil where the line does not hold a name for each. Of
+// three and more in a comment all must be known, since prose has such words too.
+func (h *plainHead) named(form numberForm) (columns []plainColumn, known bool, err error) {
+	columns, err = h.readNames(form)
+	unknown := func(c plainColumn) bool { return c.kind == columnUnknown }
+	switch {
+	case columns == nil || err != nil:
+		return nil, false, err
+	case !h.sure && form.fields > 2:
+		known = !slices.ContainsFunc(columns, unknown)
+	default:
+		known = slices.ContainsFunc(columns, func(c plainColumn) bool { return !unknown(c) })
+	}
+	return columns, known, nil
+}
+
+// readNames reads the line over the numbers as names, nil where it does not hold
 // one for each column.
-func (h *plainHead) named(form numberForm) ([]plainColumn, error) {
+func (h *plainHead) readNames(form numberForm) ([]plainColumn, error) {
 	if h.namesLine == 0 {
 		return nil, nil
 	}
@@ -253,12 +268,12 @@ func settlePair(columns []plainColumn, rows *plainRows) error {
 		*a = plainColumn{kind: columnTime}
 		b.kind = columnValue
 		return nil
-	case thousands.MatchString(rows.head):
+	case thousands.MatchString(rows.head) || spaced.MatchString(rows.head):
 		return refuse(rows.line[0], "samples", "%s", badLine([]byte(rows.head)))
 	case rising:
 		return refuse(rows.line[0], "columns", "both columns rise throughout, either may be the time; name the columns")
 	}
-	return refuse(rows.line[0], "columns", "two columns, and the first does not rise like a time: a wrapped series is not read, write one value a line or name the columns")
+	return refuse(rows.line[0], "columns", "two columns, and the first does not rise like a time: a wrapped series needs a count (# npts = N) or a layout, with --layout; columns need names")
 }
 
 func isRising(xs []float64) bool {

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"regexp"
+	"slices"
 	"strings"
 )
 
@@ -14,6 +15,9 @@ type numberForm struct {
 	delimiter byte // ' ' for any run of blanks
 	comma     bool // decimal comma
 	fields    int
+	// letterless says that a sign and three digits after a mantissa with a point
+	// are its exponent, as Fortran writes those beyond 99, and no second number.
+	letterless bool
 }
 
 // numberForms are the readings that are tried; of two that fit equally well the
@@ -39,6 +43,10 @@ func detectForm(t *Text, first int) (numberForm, error) {
 	if fits == 0 {
 		return numberForm{}, refuse(first, "samples", "%s", badLine(t.Bytes(first)))
 	}
+	if best.delimiter == '\t' && best.fields == 1 && startsWithTab(t, first) {
+		best.delimiter = ' ' // tabs that separate nothing are blanks
+	}
+	best.letterless = slices.ContainsFunc(lines, func(line []byte) bool { return exponent.Match(line) })
 	if best.comma && best.fields == 1 {
 		pairs, n := (numberForm{delimiter: ','}).fit(lines)
 		if n == fits && pairs == 2 && integerPairs(lines) {
@@ -49,6 +57,16 @@ func detectForm(t *Text, first int) (numberForm, error) {
 		return numberForm{}, refuse(first, "samples", "%s: commas may separate numbers or mark decimals; write decimal points", found(string(lines[0])))
 	}
 	return best, nil
+}
+
+// startsWithTab reports whether one of the first lines of numbers does.
+func startsWithTab(t *Text, first int) bool {
+	for n := first; n <= min(t.Len(), first+plainHeadLines); n++ {
+		if bytes.HasPrefix(t.Bytes(n), []byte("\t")) {
+			return true
+		}
+	}
+	return false
 }
 
 // headLines returns the first lines of numbers, up to plainHeadLines.
@@ -85,16 +103,20 @@ func (f numberForm) count(line []byte) (n int, ok bool) {
 	var room [64]byte
 	for rest := line; len(rest) > 0; {
 		var field []byte
-		if field, rest, _, ok = f.read(rest, room[:0]); field == nil {
+		if isBlankLine(rest) {
 			break
 		}
-		if !ok {
+		if field, rest, _, ok = f.read(rest, room[:0]); field == nil || !ok {
 			return 0, false
 		}
 		n++
 	}
 	return n, n > 0
 }
+
+// isBlankLine reports whether nothing but blanks is left: a delimiter at the end
+// of a line makes no field.
+func isBlankLine(rest []byte) bool { return len(skipBlanks(rest)) == 0 }
 
 // integerPairs reports whether every line is two integers as people write them:
 // no leading zeros, no negative zero.
@@ -168,14 +190,21 @@ func unquote(field []byte) []byte {
 // largest value of a float in single precision being 3.4e38.
 const maxPlain = 1e38
 
+// otherLine names the first of the lines that were read, in brackets.
+func otherLine(read []int) string {
+	if len(read) == 0 {
+		return ""
+	}
+	return fmt.Sprintf(" (the others are in line %d)", read[0])
+}
+
 var unicodeMinus = []byte("−")
 
 // number reads a field; scratch is room for a rewritten copy. It reports false
 // for what is no number, for a sign inside, and for magnitudes of maxPlain.
 func (f numberForm) number(field, scratch []byte) (float64, bool) {
-	if bytes.HasPrefix(field, unicodeMinus) {
-		scratch = append(append(scratch, '-'), field[len(unicodeMinus):]...)
-		field = scratch
+	if bytes.IndexByte(field, unicodeMinus[0]) >= 0 {
+		field = bytes.ReplaceAll(field, unicodeMinus, []byte("-"))
 	}
 	if f.comma {
 		if bytes.IndexByte(field, '.') >= 0 {
@@ -187,7 +216,7 @@ func (f numberForm) number(field, scratch []byte) (float64, bool) {
 		}
 	}
 	for i := 1; i < len(field); i++ {
-		if (field[i] == '-' || field[i] == '+') && (isDigit(field[i-1]) || field[i-1] == '.') {
+		if (field[i] == '-' || field[i] == '+') && (isDigit(field[i-1]) || field[i-1] == '.') && !f.endsInExponent(field, i) {
 			return 0, false
 		}
 	}
@@ -195,11 +224,20 @@ func (f numberForm) number(field, scratch []byte) (float64, bool) {
 	return v, ok && math.Abs(v) < maxPlain
 }
 
+// endsInExponent reports whether the sign at i begins an exponent without
+// letter.
+func (f numberForm) endsInExponent(field []byte, i int) bool {
+	return f.letterless && i+4 == len(field) && bytes.IndexByte(field[:i], '.') >= 0 && !bytes.ContainsAny(field[:i], "EeDd")
+}
+
 var (
-	thousands = regexp.MustCompile(`^[-+]?\d{1,3}(,\d{3})+\.\d*$|^[-+]?\d{1,3}(\.\d{3})+,\d*$`)
-	spaced    = regexp.MustCompile(`^[-+]?\d{1,3}( \d{3})+[.,]\d*$`)
-	timeOfDay = regexp.MustCompile(`^['"]?(\d{4}-\d{2}-\d{2}[T ]?)?(\d{1,2}:\d{2}(:\d{2})?)?`)
-	innerSign = regexp.MustCompile(`[0-9.][-+−][0-9.]`)
+	thousands  = regexp.MustCompile(`^[-+]?\d{1,3}(,\d{3})+\.\d*$|^[-+]?\d{1,3}(\.\d{3})+,\d*$`)
+	spaced     = regexp.MustCompile(`^[-+]?\d{1,3}( \d{3})+[.,]\d*$`)
+	exponent   = regexp.MustCompile(`\d[.,]?[EeDd][-+]?\d`)
+	emptyField = regexp.MustCompile(`^[,;]|[,;][ \t]*[,;]`)
+	glued      = regexp.MustCompile(`\d\.\d+\.\d|[EeDd][-+]?\d+\.\d`)
+	timeOfDay  = regexp.MustCompile(`^['"]?(\d{4}-\d{2}-\d{2}[T ]?)?(\d{1,2}:\d{2}(:\d{2})?)?`)
+	innerSign  = regexp.MustCompile(`[0-9.][-+−][0-9.]`)
 )
 
 // badLine says what is wrong with a line that no form reads.
@@ -213,6 +251,9 @@ func badLine(line []byte) string {
 			return cause
 		}
 	}
+	if emptyField.MatchString(text) {
+		return fmt.Sprintf("%s: a field is empty: missing values are not read", found(text))
+	}
 	return fmt.Sprintf("expected numbers, found %s", found(text))
 }
 
@@ -225,8 +266,8 @@ func badField(field string) string {
 		return fmt.Sprintf("%s is a clock time; give seconds from the start", found(field))
 	case thousands.MatchString(field):
 		return fmt.Sprintf("%s: thousands separators are not read", found(field))
-	case innerSign.MatchString(field):
-		return fmt.Sprintf("%s: fields touch, as in a fixed-width file; separate them", found(field))
+	case innerSign.MatchString(field), glued.MatchString(field):
+		return fmt.Sprintf("%s: fields touch, as in a fixed-width file; give their widths in a layout, with --layout", found(field))
 	}
 	if v, ok := parseNumber([]byte(field)); ok && math.Abs(v) >= maxPlain {
 		return fmt.Sprintf("value %s is an overflow mark", found(field))
@@ -234,16 +275,21 @@ func badField(field string) string {
 	return ""
 }
 
-// cause says why a line does not fit the form that the others have.
-func (f numberForm) cause(line []byte) string {
+// cause says why a line does not fit the form that the others have, those in
+// read among them.
+func (f numberForm) cause(line []byte, read []int) string {
 	n := 0
 	for rest := line; len(rest) > 0; {
 		var field []byte
 		var ok bool
-		if field, rest, _, ok = f.read(rest, nil); field == nil {
+		if isBlankLine(rest) {
 			break
 		}
+		field, rest, _, ok = f.read(rest, nil)
 		n++
+		if field == nil {
+			return fmt.Sprintf("value %d of the line is empty: missing values are not read", n)
+		}
 		if ok {
 			continue
 		}
@@ -252,7 +298,7 @@ func (f numberForm) cause(line []byte) string {
 			return cause
 		}
 		if bytes.ContainsAny(field, ".,") && strings.Trim(text, "0123456789.,+-") == "" {
-			return fmt.Sprintf("%s: decimal points and decimal commas in one file", found(text))
+			return fmt.Sprintf("%s: decimal points and decimal commas in one file%s", found(text), otherLine(read))
 		}
 		return fmt.Sprintf("expected a number, found %s", found(text))
 	}

@@ -128,7 +128,7 @@ func (h *plainHead) stated(keys ...string) statement {
 // checkCount holds the number of values a channel has to the one that a comment
 // announces.
 func (h *plainHead) checkCount(values int) error {
-	s := h.stated("npts", "points", "number_of_points", "samples", "number_of_samples", "count")
+	s := h.stated(countKeys...)
 	if s.text == "" {
 		return nil
 	}
@@ -142,27 +142,32 @@ func (h *plainHead) checkCount(values int) error {
 	return nil
 }
 
-// statedStep returns the time step in s that a comment states as step or rate,
-// 0 where none does.
+// statedStep returns the time step in s that comments state as step or rate,
+// which must agree, 0 where none does.
 func (h *plainHead) statedStep() (step float64, line int, err error) {
-	if s := h.stated("dt", "time_step", "delta_t", "sampling_interval", "sample_interval"); s.text != "" {
+	if s := h.stated(stepKeys...); s.text != "" {
 		v, unit, ok := quantity(s.text)
 		switch {
 		case ok && v > 0 && (unit == "" || isSeconds(unit)):
-			return v, s.line, nil
+			step, line = v, s.line
 		case ok && v > 0 && unit == "ms":
-			return v / 1000, s.line, nil
+			step, line = v/1000, s.line
+		default:
+			return 0, 0, refuse(s.line, "dt", "expected a time step over zero in s, found %s", found(s.text))
 		}
-		return 0, 0, refuse(s.line, "dt", "expected a time step over zero in s, found %s", found(s.text))
 	}
-	if s := h.stated("rate", "sampling_rate", "sample_rate", "sampling_frequency", "samples_per_second", "sps"); s.text != "" {
+	if s := h.stated(rateKeys...); s.text != "" {
 		v, unit, ok := quantity(s.text)
-		if ok && v > 0 && (unit == "" || unit == "hz" || unit == "sps") {
+		switch {
+		case !ok || !(v > 0) || unit != "" && unit != "hz" && unit != "sps":
+			return 0, 0, refuse(s.line, "rate", "expected a sampling rate over zero in Hz, found %s", found(s.text))
+		case step == 0:
 			return 1 / v, s.line, nil
+		case math.Abs(step*v-1) > stepAgreement:
+			return 0, 0, refuse(s.line, "rate", "%g Hz here, a time step of %g s in line %d", v, step, line)
 		}
-		return 0, 0, refuse(s.line, "rate", "expected a sampling rate over zero in Hz, found %s", found(s.text))
 	}
-	return 0, 0, nil
+	return step, line, nil
 }
 
 func isSeconds(unit string) bool {
@@ -216,6 +221,7 @@ func (h *plainHead) describe(c *Channel) error {
 			c.warn("line %d: %s %s not understood", s.line, s.key, found(s.value))
 		}
 	}
+	settlePlaces(c)
 	return nil
 }
 

@@ -81,7 +81,7 @@ func readRows(t *Text, first int, form numberForm) (*plainRows, error) {
 				continue
 			}
 		}
-		bad.add(n, func() string { return form.cause(line) })
+		bad.add(n, func() string { return form.cause(line, r.line) })
 	}
 	if !math.IsNaN(count) && count != float64(len(r.line)) {
 		return nil, refuse(first, "samples", "line holds 1 value where the others hold %d, and is no count of the %d lines below", form.fields, len(r.line))
@@ -91,11 +91,12 @@ func readRows(t *Text, first int, form numberForm) (*plainRows, error) {
 	}
 	if form.fields == 1 && len(r.line) > 1 && r.values[0][0] == float64(len(r.line)-1) {
 		r.values[0], r.line = r.values[0][1:], r.line[1:] // the count of those below
+		return r, nil
 	}
 	if len(r.line) == 0 {
 		return nil, refuse(first, "samples", "no data found")
 	}
-	return r, nil
+	return r, checkFirstValue(t, first, r)
 }
 
 // newPlainRows makes room for the rows: as many as can stand in the bytes there
@@ -136,14 +137,14 @@ func (r *plainRows) append(line []byte, n int, form numberForm, scratch []byte) 
 		var field []byte
 		var v float64
 		var ok bool
-		if field, rest, v, ok = form.read(rest, scratch); field == nil {
+		if isBlankLine(rest) {
 			break
 		}
-		if !ok || i == form.fields {
+		if field, rest, v, ok = form.read(rest, scratch); field == nil || !ok || i == form.fields {
 			i = -1
 			break
 		}
-		if r.minus == 0 && field[0] == unicodeMinus[0] {
+		if r.minus == 0 && bytes.IndexByte(field, unicodeMinus[0]) >= 0 {
 			r.minus = n
 		}
 		r.values[i] = append(r.values[i], v)
@@ -180,7 +181,7 @@ func resolution(field []byte) float64 {
 }
 
 // sentinels are the numbers that tables use for "no value".
-var sentinels = []float64{-999, -9999, 99999}
+var sentinels = []float64{-999, -9999, -99999, -999999, 9999, 99999, 999999}
 
 // checkSentinels looks for values that stand far from all others and are
 // written like "no value": several are refused, one is a warning. line gives the
