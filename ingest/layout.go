@@ -227,6 +227,9 @@ func (l *Layout) block(t *Text, b span, shared layoutValues, hints Hints) ([]Cha
 	if err != nil {
 		return nil, err
 	}
+	if n := series.len(); n < MinSamples { // before many channels of nothing are made
+		return nil, refuse(series.line(0), "samples", "%d values; a record needs at least %d", n, MinSamples)
+	}
 	step, err := l.step(values, series, hints)
 	if err != nil {
 		return nil, err

@@ -73,6 +73,7 @@ func (l *Layout) channel(s *layoutSeries, i int, v layoutValues, step float64, h
 		return c, err
 	}
 	l.describe(&c, v, column)
+	c.Warnings = append(c.Warnings, v.doubts...)
 	if s.minus > 0 {
 		c.warn("line %d: U+2212 read as a minus sign", s.minus)
 	}

@@ -107,13 +107,14 @@ func positiveNumber(text string) (float64, error) {
 
 // layoutValues are what the lines before the numbers say.
 type layoutValues struct {
-	text  map[quantityKey]statement
-	times map[string]*timeParts
+	text   map[quantityKey]statement
+	times  map[string]*timeParts
+	doubts []string // what was not understood, for the channels' warnings
 }
 
 // over returns v and what below says beside it.
 func (v layoutValues) over(below layoutValues) layoutValues {
-	out := layoutValues{maps.Clone(below.text), maps.Clone(below.times)}
+	out := layoutValues{maps.Clone(below.text), maps.Clone(below.times), slices.Concat(below.doubts, v.doubts)}
 	if out.text == nil {
 		return v
 	}
@@ -141,7 +142,7 @@ func (l *Layout) stated(v layoutValues, name string, column int) (statement, boo
 // lines that differ in a quantity are an error, as is a promised one that
 // decides what the numbers mean and is not there.
 func (l *Layout) find(t *Text, s span, inFile bool) (layoutValues, error) {
-	v := layoutValues{map[quantityKey]statement{}, map[string]*timeParts{}}
+	v := layoutValues{text: map[quantityKey]statement{}, times: map[string]*timeParts{}}
 	for i := range l.finds {
 		f := &l.finds[i]
 		if f.inFile != inFile {
@@ -181,14 +182,7 @@ func (l *Layout) take(v *layoutValues, f *layoutFind, line []byte, n int, seen m
 		}
 		seen[name] = true
 		if isTimeQuantity(name) {
-			parts := v.times[name]
-			if parts == nil {
-				parts = &timeParts{}
-				v.times[name] = parts
-			}
-			if !parts.add(f.time, text, n) {
-				return refuse(n, name, "%s is not written as the layout says, or contradicts an earlier line", found(text))
-			}
+			v.takeTime(f, name, text, n)
 			continue
 		}
 		if l.numbers.form.comma {
@@ -202,6 +196,23 @@ func (l *Layout) take(v *layoutValues, f *layoutFind, line []byte, n int, seen m
 		}
 	}
 	return nil
+}
+
+// takeTime keeps a time or a part of one. What is not written as the layout says,
+// or contradicts an earlier line, is a doubt, and a time in doubt is unknown.
+func (v *layoutValues) takeTime(f *layoutFind, name, text string, line int) {
+	parts, seen := v.times[name]
+	if parts == nil && seen {
+		return
+	}
+	if !seen {
+		parts = &timeParts{}
+		v.times[name] = parts
+	}
+	if !parts.add(f.time, text, line) {
+		v.times[name] = nil
+		v.doubts = append(v.doubts, fmt.Sprintf("line %d: %s %s not understood", line, name, found(text)))
+	}
 }
 
 // withPoint returns a number or position that is written with a decimal comma

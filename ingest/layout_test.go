@@ -187,6 +187,7 @@ func TestLayoutOutcomes(t *testing.T) {
 		{"a line is short", edit(t, quay, 15, quay[14], quay[14][:63]), hints, `case:15: samples: line holds 9 values, expected 10`},
 		{"overflow", edit(t, quay, 15, quay[14][:7], "*******"), hints, `case:15: samples: value "*******": missing values are not read`},
 		{"two records", head(quay, quay), hints, `case:32: samples: text "PORT OF NORTHWATER MOTION LOGGER      I…" after the end of the data`},
+		{"nine values", append(edit(t, quay, 7, "197", "9")[:10], quay[10][:63], "END"), hints, `case:11: samples: 9 values; a record needs at least 10`},
 		{"header alone", quay[:10], hints, `case:10: data: the lines end before the first number`},
 		{"start", edit(t, quay, 7, "200 HZ", "fast HZ"), hints, `case:7: rate_hz: expected a number over zero, found "fast"`},
 
@@ -263,5 +264,55 @@ func TestLayoutReads(t *testing.T) {
 		if got != c.want {
 			t.Errorf("%s: %s, want %s", c.name, got, c.want)
 		}
+	}
+}
+
+// TestLayoutOfColumnsWithHeaders has quantities that differ from column to
+// column, and a day without an hour.
+func TestLayoutOfColumnsWithHeaders(t *testing.T) {
+	hints := Hints{Layouts: mustRead(t,
+		`name = "twins"`, `recognise = [{ line = 1, pattern = '^TWINS' }]`, `data = { after = '^--', open_end = true }`, `numbers.separator = "blanks"`,
+		`[fixed]`, `unit = "gal"`, `dt_s = 0.01`, `processing = "corrected"`, `low_cut_hz = 0.1`, `high_cut_hz = 25`,
+		`[[column]]`, `number = 1`, `holds = "acceleration"`, `azimuth_deg = 350`, `scale = 2`,
+		`[[column]]`, `number = 2`, `holds = "acceleration"`, `unit = "g"`,
+		`[[header]]`, `column = 1`, `pattern = '^MAX (?P<peak>\S+)'`,
+		`[[header]]`, `column = 2`, `pattern = '^MAX \S+ (?P<peak>\S+)'`,
+		`[[header]]`, `column = 2`, `pattern = '^DIR (?P<direction>\S+)'`,
+		`[[header]]`, `pattern = '^DAY (?P<origin_time>.+), (?P<event_name>.+), (?P<siting>.+)'`, `time = "D DD/MM/YY"`,
+	)}
+	lines := []string{"TWINS", "MAX 14 0.09", "DIR UP", "DAY D 04/03/41, Northwater main shock, roof of the depot", "--"}
+	for i := range 12 {
+		lines = append(lines, fmt.Sprintf("%d %.2f", i%8, 0.01*float64(i%10)))
+	}
+	_, channels, err := parseLines(lines, hints)
+	if err != nil || len(channels) != 2 {
+		t.Fatal(len(channels), err)
+	}
+	a, b := channels[0], channels[1]
+	if a.Unit != "counts" || a.UnitMPS2 != 0.02 || a.HeaderPeak != Known(0.14) || short(a.Orientation) != "h 350" || a.Acceleration[7] != 0.14 {
+		t.Errorf("first: %s of %g, peak %+v, %s, %g", a.Unit, a.UnitMPS2, a.HeaderPeak, short(a.Orientation), a.Acceleration[7])
+	}
+	if b.Unit != "g" || b.HeaderPeak != Known(0.09*9.80665) || short(b.Orientation) != "v" {
+		t.Errorf("second: %s, peak %+v, %s", b.Unit, b.HeaderPeak, short(b.Orientation))
+	}
+	for _, c := range channels {
+		want := Event{Name: "Northwater main shock", Date: time.Date(1941, 3, 4, 0, 0, 0, 0, time.UTC)}
+		if c.Event != want || c.Siting != SitingStructure || c.Processing != ProcessingCorrected || c.LowCutHz != Known(0.1) || c.HighCutHz != Known(25) {
+			t.Errorf("event %+v, siting %s, %s %v %v", c.Event, c.Siting, c.Processing, c.LowCutHz, c.HighCutHz)
+		}
+	}
+	checkRefusals(t, []refusal{
+		{"peak of the second", edit(t, lines, 2, "0.09", "0.9"), hints, `case:6: peak: channel UP: samples reach 0.8826 m/s², the header says 8.826 m/s²`},
+		{"no direction of the second", without(lines, 3, 3), hints, `case:5: direction: several channels, and the layout finds no direction of number 2`},
+		{"a line with one value", edit(t, lines, 9, "3 0.03", "3"), hints, `case:9: samples: line holds 1 values, expected 2`},
+		{"a line with three", edit(t, lines, 9, "3 0.03", "3 4 5"), hints, `case:9: samples: text "5" after the 2 values of the line`},
+	})
+	_, channels, err = parseLines(edit(t, lines, 4, "04/03/41", "04/13/41"), hints)
+	if err != nil || !slices.Contains(channels[0].Warnings, "line 4: origin_time not understood") {
+		t.Errorf("a day that is none: %v, %q", err, channels[0].Warnings)
+	}
+	_, channels, err = parseLines(edit(t, lines, 4, "04/03/41", "March"), hints)
+	if err != nil || !slices.Contains(channels[1].Warnings, `line 4: origin_time "D March" not understood`) || !channels[1].Event.Date.IsZero() {
+		t.Errorf("another form: %v, %q, %v", err, channels[1].Warnings, channels[1].Event.Date)
 	}
 }
