@@ -28,7 +28,10 @@ func addFixtures(f *testing.F, format string) {
 // fuzzFormat holds one reader to what every reader owes on any bytes: no panic,
 // an error of a known type that is in the file, channels that meet their
 // invariants, the input untouched, and memory bounded by the size of the input.
-func fuzzFormat(t *testing.T, reader Format, data []byte) {
+func fuzzFormat(t *testing.T, reader Format, data []byte) { fuzzHinted(t, reader, data, Hints{}) }
+
+// fuzzHinted is fuzzFormat with what the user states.
+func fuzzHinted(t *testing.T, reader Format, data []byte, hints Hints) {
 	before := bytes.Clone(data)
 	content, _ := newContent(data)
 	if reader.Sniff(content) == "" {
@@ -36,7 +39,7 @@ func fuzzFormat(t *testing.T, reader Format, data []byte) {
 	}
 	var start, end runtime.MemStats
 	runtime.ReadMemStats(&start)
-	channels, err := reader.Parse(content, Hints{})
+	channels, err := reader.Parse(content, hints)
 	runtime.ReadMemStats(&end)
 	// A value of eight bytes comes from at least one byte of text; headings are
 	// turned into text several times over.
