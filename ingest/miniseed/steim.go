@@ -65,7 +65,11 @@ func steim(dst []float64, b []byte, e Encoding, little bool) error {
 				continue
 			}
 			w := binary.BigEndian.Uint32(f[4*word:])
-			if little {
+			switch {
+			case !little || code == 1:
+			case e == Steim1 && code == 2:
+				w = bits.RotateLeft32(bits.ReverseBytes32(w), 16)
+			default:
 				w = bits.ReverseBytes32(w)
 			}
 			n := differences(&d, code, w, e)

@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"hash/crc32"
 	"math"
+	"math/bits"
 	"time"
 )
 
@@ -140,9 +141,9 @@ func (r Record) blockettes(order binary.ByteOrder) []byte {
 		add(1001, 100, byte(r.Microseconds), 0, 0)
 	}
 	if r.Rate100 != 0 {
-		bits := make([]byte, 8)
-		order.PutUint32(bits, math.Float32bits(r.Rate100))
-		add(100, bits...)
+		rate := make([]byte, 8)
+		order.PutUint32(rate, math.Float32bits(r.Rate100))
+		add(100, rate...)
 	}
 	var out []byte
 	for i, p := range parts {
@@ -249,6 +250,9 @@ func encodeSteim(x []float64, two bool, order order, frames int) ([]byte, int) {
 			if k < len(x) {
 				word, code, n = pack(x, k, packings)
 			}
+			if order == binary.LittleEndian {
+				word = inPieces(word, code, two)
+			}
 			words = append(words, word)
 			words[head] |= code << (30 - 2*w)
 			k += n
@@ -260,6 +264,18 @@ func encodeSteim(x []float64, two bool, order order, frames int) ([]byte, int) {
 		b = order.AppendUint32(b, w)
 	}
 	return b, k
+}
+
+// inPieces turns a word so that its differences of whole bytes keep their order
+// when the word is written in little-endian order.
+func inPieces(word, code uint32, two bool) uint32 {
+	switch {
+	case code == 1:
+		return bits.ReverseBytes32(word)
+	case code == 2 && !two:
+		return bits.RotateLeft32(word, 16)
+	}
+	return word
 }
 
 func pack(x []float64, k int, packings []packing) (word, code uint32, n int) {
