@@ -26,7 +26,7 @@ for (const name of process.argv.slice(2)) {
       file: path.basename(name), offset, id: h.identifier, encoding: h.encoding, crc: h.crc, start_us: Math.round(h.start.toMillis() * 1000), rate: h.sampleRate,
       samples: Array.from(r.decompress()),
     });
-    offset += h.getSize();
+    offset += h.getSize() + h.dataLength; // the size is that of the headers
   }
 }
 process.stdout.write('{"library": "seisplotjs 3.2.2", "read": [\n' + read.map((r) => JSON.stringify(r)).join(',\n') + '\n]}\n');
