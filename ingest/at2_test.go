@@ -285,7 +285,7 @@ func TestAT2Refusals(t *testing.T) {
 		{"page appended", fixtureLines(t, "at2", "damaged-page-appended.AT2"), Hints{}, `case:21: samples: expected a number, found "<html><body>503"`},
 		{"page", fixtureLines(t, "at2", "damaged-page.AT2"), Hints{}, `case:1: an HTML page, not a record: a download that went wrong?`},
 		{"step zero", edit(t, base, 4, ".0100", ".0000"), Hints{}, `case:4: NPTS, DT: time step 0 s is not between 0 and 1 s`},
-		{"step coarse", edit(t, base, 4, ".0100", ".2000"), Hints{}, `case:5: dt: time step 0.2 s is outside 0.0001 to 0.1 s`},
+		{"step coarse", edit(t, base, 4, ".0100", ".2000"), Hints{}, `case:5: dt: time step 0.2 s is outside 0.0005 to 0.1 s`},
 		{"counts", fixtureLines(t, "at2", "damaged-unit.AT2"), Hints{}, `case:3: unit: raw counts need a scale; convert them to a unit of acceleration first`},
 		{"counts with a hint", fixtureLines(t, "at2", "damaged-unit.AT2"), Hints{Unit: "g"}, `case:3: unit: raw counts need a scale; convert them to a unit of acceleration first`},
 		{"unit unknown", without("ACCELERATION IN UNITS OF FURLONGS"), Hints{}, `case:3: unit: unknown unit "FURLONGS"; known are g, mg, m/s2, cm/s2, gal, mm/s2, in/s2, ft/s2`},

@@ -35,29 +35,29 @@ var catalogueColumns = columnsByName(
 	textColumn("component", 0, func(r *catalogueRow) *string { return &r.component }),
 	textColumn("event_name", scopeEvent, func(r *catalogueRow) *string { return &r.channel.Event.Name }),
 	catalogueColumn{"origin_time", scopeEvent, setOrigin},
-	numberColumn("magnitude", scopeEvent, -2, 11, func(r *catalogueRow) *Number { return &r.channel.Event.Magnitude }),
+	numberColumn("magnitude", scopeEvent, magnitudeLimits, func(r *catalogueRow) *Number { return &r.channel.Event.Magnitude }),
 	textColumn("magnitude_type", scopeEvent, func(r *catalogueRow) *string { return &r.channel.Event.MagnitudeType }),
-	numberColumn("depth_km", scopeEvent, -10, 800, func(r *catalogueRow) *Number { return &r.channel.Event.DepthKM }),
-	numberColumn("event_latitude", scopeEvent, -90, 90, func(r *catalogueRow) *Number { return &r.channel.Event.Latitude }),
-	numberColumn("event_longitude", scopeEvent, -180, 360, func(r *catalogueRow) *Number { return &r.channel.Event.Longitude }),
-	numberColumn("distance_km", scopeRecord, 0, 20100, func(r *catalogueRow) *Number { return &r.channel.DistanceKM }),
-	numberColumn("epicentral_km", scopeRecord, 0, 20100, func(r *catalogueRow) *Number { return &r.channel.Distances.EpicentralKM }),
-	numberColumn("hypocentral_km", scopeRecord, 0, 20100, func(r *catalogueRow) *Number { return &r.channel.Distances.HypocentralKM }),
-	numberColumn("rupture_km", scopeRecord, 0, 20100, func(r *catalogueRow) *Number { return &r.channel.Distances.RuptureKM }),
-	numberColumn("jb_km", scopeRecord, 0, 20100, func(r *catalogueRow) *Number { return &r.channel.Distances.JoynerBooreKM }),
+	numberColumn("depth_km", scopeEvent, depthLimits, func(r *catalogueRow) *Number { return &r.channel.Event.DepthKM }),
+	numberColumn("event_latitude", scopeEvent, latitudeLimits, func(r *catalogueRow) *Number { return &r.channel.Event.Latitude }),
+	numberColumn("event_longitude", scopeEvent, limits{-180, 360}, func(r *catalogueRow) *Number { return &r.channel.Event.Longitude }),
+	numberColumn("distance_km", scopeRecord, distanceLimits, func(r *catalogueRow) *Number { return &r.channel.DistanceKM }),
+	numberColumn("epicentral_km", scopeRecord, distanceLimits, func(r *catalogueRow) *Number { return &r.channel.Distances.EpicentralKM }),
+	numberColumn("hypocentral_km", scopeRecord, distanceLimits, func(r *catalogueRow) *Number { return &r.channel.Distances.HypocentralKM }),
+	numberColumn("rupture_km", scopeRecord, distanceLimits, func(r *catalogueRow) *Number { return &r.channel.Distances.RuptureKM }),
+	numberColumn("jb_km", scopeRecord, distanceLimits, func(r *catalogueRow) *Number { return &r.channel.Distances.JoynerBooreKM }),
 	textColumn("station_name", scopeStation, func(r *catalogueRow) *string { return &r.channel.Station.Name }),
-	numberColumn("station_latitude", scopeStation, -90, 90, func(r *catalogueRow) *Number { return &r.channel.Station.Latitude }),
-	numberColumn("station_longitude", scopeStation, -180, 360, func(r *catalogueRow) *Number { return &r.channel.Station.Longitude }),
-	numberColumn("elevation_m", scopeStation, -500, 9000, func(r *catalogueRow) *Number { return &r.channel.Station.ElevationM }),
-	numberColumn("vs30_m_s", scopeStation, 1, 10000, func(r *catalogueRow) *Number { return &r.channel.Station.Vs30 }),
+	numberColumn("station_latitude", scopeStation, latitudeLimits, func(r *catalogueRow) *Number { return &r.channel.Station.Latitude }),
+	numberColumn("station_longitude", scopeStation, limits{-180, 360}, func(r *catalogueRow) *Number { return &r.channel.Station.Longitude }),
+	numberColumn("elevation_m", scopeStation, limits{-500, 9000}, func(r *catalogueRow) *Number { return &r.channel.Station.ElevationM }),
+	numberColumn("vs30_m_s", scopeStation, vs30Limits, func(r *catalogueRow) *Number { return &r.channel.Station.Vs30 }),
 	textColumn("site_class", scopeStation, func(r *catalogueRow) *string { return &r.channel.Station.SiteClass }),
-	numberColumn("azimuth_deg", scopeStation, 0, 360, func(r *catalogueRow) *Number { return &r.channel.Orientation.AzimuthDeg }),
+	numberColumn("azimuth_deg", scopeStation, limits{0, 360}, func(r *catalogueRow) *Number { return &r.channel.Orientation.AzimuthDeg }),
 	textColumn("instrument", scopeStation, func(r *catalogueRow) *string { return &r.channel.Instrument }),
 	catalogueColumn{"siting", scopeStation, setSiting},
 	catalogueColumn{"unit", scopeFile, setUnit},
 	catalogueColumn{"dt_s", scopeFile, setStep},
-	numberColumn("low_cut_hz", scopeRecord, 1e-6, 1e4, func(r *catalogueRow) *Number { return &r.channel.LowCutHz }),
-	numberColumn("high_cut_hz", scopeRecord, 1e-6, 1e4, func(r *catalogueRow) *Number { return &r.channel.HighCutHz }),
+	numberColumn("low_cut_hz", scopeRecord, limits{1e-6, 1e4}, func(r *catalogueRow) *Number { return &r.channel.LowCutHz }),
+	numberColumn("high_cut_hz", scopeRecord, limits{1e-6, 1e4}, func(r *catalogueRow) *Number { return &r.channel.HighCutHz }),
 )
 
 func columnsByName(columns ...catalogueColumn) map[string]*catalogueColumn {
@@ -75,9 +75,9 @@ func textColumn(name string, s scope, place func(*catalogueRow) *string) catalog
 	}}
 }
 
-func numberColumn(name string, s scope, low, high float64, place func(*catalogueRow) *Number) catalogueColumn {
+func numberColumn(name string, s scope, l limits, place func(*catalogueRow) *Number) catalogueColumn {
 	return catalogueColumn{name, s, func(row *catalogueRow, text string) error {
-		v, err := numberWithin(text, low, high)
+		v, err := numberWithin(text, l)
 		if err == nil {
 			*place(row) = Known(v)
 		}
@@ -85,13 +85,13 @@ func numberColumn(name string, s scope, low, high float64, place func(*catalogue
 	}}
 }
 
-func numberWithin(text string, low, high float64) (float64, error) {
+func numberWithin(text string, l limits) (float64, error) {
 	v, ok := parseNumber([]byte(text))
 	switch {
 	case !ok:
 		return 0, fmt.Errorf("expected a number, found %s", found(text))
-	case v < low || v > high:
-		return 0, fmt.Errorf("%g is outside %g to %g", v, low, high)
+	case !l.hold(v):
+		return 0, fmt.Errorf("%g is outside %g to %g", v, l.low, l.high)
 	}
 	return v, nil
 }
@@ -144,7 +144,7 @@ func setUnit(row *catalogueRow, text string) error {
 }
 
 func setStep(row *catalogueRow, text string) error {
-	v, err := numberWithin(text, MinStepS, MaxStepS)
+	v, err := numberWithin(text, limits{MinStepS, MaxStepS})
 	if err != nil {
 		return err
 	}

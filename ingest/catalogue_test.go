@@ -90,7 +90,7 @@ func TestCatalogueErrors(t *testing.T) {
 		`damaged-cells.csv:2: magnitude: expected a number, found "big"`,
 		`damaged-cells.csv:2: siting: expected free-field, ground, structure, borehole or unknown, found "roof"`,
 		`damaged-cells.csv:2: unit: unknown unit "bar"; known are g, mg, m/s2, cm/s2, gal, mm/s2, in/s2, ft/s2`,
-		`damaged-cells.csv:2: dt_s: 0 is outside 0.0001 to 0.1`,
+		`damaged-cells.csv:2: dt_s: 0 is outside 0.0005 to 0.1`,
 		`damaged-cells.csv:2: event_latitude: 91 is outside -90 to 90`,
 		`damaged-cells.csv:3: the row states neither file nor event nor station`,
 		`damaged-cells.csv:4: unit and dt_s need a file, since they are wanted before a file is read`,

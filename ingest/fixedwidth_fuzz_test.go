@@ -86,9 +86,6 @@ func checkInvariants(t *testing.T, c *Channel, lines int) {
 	if c.LowCutHz.Known && c.HighCutHz.Known && c.LowCutHz.Value >= c.HighCutHz.Value {
 		t.Fatalf("corners %v, %v", c.LowCutHz, c.HighCutHz)
 	}
-	if lat, lon := c.Station.Latitude, c.Station.Longitude; math.Abs(lat.Value) > 90 || math.Abs(lon.Value) > 180 || lat.Known != lon.Known {
-		t.Fatalf("station at %v, %v", lat, lon)
-	}
 	for i, a := range c.Acceleration {
 		if math.IsNaN(a) {
 			t.Fatalf("value %d is NaN", i+1)
@@ -101,12 +98,28 @@ func checkInvariants(t *testing.T, c *Channel, lines int) {
 		}
 		return
 	}
+	checkBelieved(t, c)
 	for _, s := range []Siting{SitingUnknown, SitingFreeField, SitingGround, SitingStructure, SitingBorehole} {
 		if c.Siting == s {
 			return
 		}
 	}
 	t.Fatalf("siting %q", c.Siting)
+}
+
+// checkBelieved looks at the quantities that check makes unknown beyond their
+// limits.
+func checkBelieved(t *testing.T, c *Channel) {
+	t.Helper()
+	if lat, lon := c.Station.Latitude, c.Station.Longitude; math.Abs(lat.Value) > 90 || math.Abs(lon.Value) > 180 || lat.Known != lon.Known {
+		t.Fatalf("station at %v, %v", lat, lon)
+	}
+	if e := c.Event; math.Abs(e.Latitude.Value) > 90 || math.Abs(e.Longitude.Value) > 180 || math.Abs(e.Magnitude.Value) > 10 || e.DepthKM.Value > 800 {
+		t.Fatalf("event %+v", e)
+	}
+	if c.Station.Vs30.Value > 10000 || c.DistanceKM.Value < 0 || c.Distances.EpicentralKM.Value < 0 {
+		t.Fatalf("Vs30 %v, distances %v, %v", c.Station.Vs30, c.DistanceKM, c.Distances)
+	}
 }
 
 // hugeV2 and hugeCosmos announce two thousand million values and hold a hundred.

@@ -166,8 +166,7 @@ var (
 )
 
 // parsePosition reads "40.503N, 124.100W" or, failing that, two signed decimal
-// numbers as latitude and longitude. Both are unknown where there are none, or
-// where they are no position.
+// numbers as latitude and longitude. Both are unknown where there are none.
 func parsePosition(s string) (latitude, longitude Number) {
 	var lat, lon float64
 	if m := letterPosition.FindStringSubmatch(s); m != nil {
@@ -184,11 +183,11 @@ func parsePosition(s string) (latitude, longitude Number) {
 	return position(Known(lat), Known(lon))
 }
 
-// position returns latitude and longitude where both are stated and mean a
-// place. Two zeros are how headings leave them out.
+// position returns latitude and longitude where both are stated. Two zeros are
+// how headings leave them out.
 func position(latitude, longitude Number) (Number, Number) {
 	lat, lon := latitude.Value, longitude.Value
-	if !latitude.Known || !longitude.Known || lat == 0 && lon == 0 || math.Abs(lat) > 90 || math.Abs(lon) > 180 {
+	if !latitude.Known || !longitude.Known || lat == 0 && lon == 0 {
 		return Number{}, Number{}
 	}
 	return latitude, longitude
@@ -218,7 +217,7 @@ func parseMagnitude(s string) (Number, string) {
 	all := magnitudeText.FindAllStringSubmatch(s, -1)
 	for _, scale := range magnitudeScales {
 		for _, m := range all {
-			if v := decimal(m[2]); strings.EqualFold(m[1], scale) && v > 0 && v < 11 {
+			if v := decimal(m[2]); strings.EqualFold(m[1], scale) && v > 0 {
 				return Known(v), scale
 			}
 		}

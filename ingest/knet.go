@@ -121,7 +121,6 @@ func (knet) Parse(content *Content, hints Hints) ([]Channel, error) {
 		return nil, err
 	}
 	c.Acceleration = counts
-	warnClipping(c, clippedRun)
 	removeMean(c)
 	if err := h.peak(c); err != nil {
 		return nil, err

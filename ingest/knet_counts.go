@@ -122,38 +122,3 @@ func compensatedSum(x []float64) float64 {
 	}
 	return sum + lost
 }
-
-// clippedRun is the number of equal samples at the extreme that suggests a
-// clipped recording.
-const clippedRun = 3
-
-// warnClipping looks for runs of at least limit equal samples at the largest or
-// smallest value.
-func warnClipping(c *Channel, limit int) {
-	if run, at := longestExtreme(c.Acceleration); run >= limit {
-		c.warn("%d consecutive samples at the extreme, from sample %d on: clipped?", run, at+1)
-	}
-}
-
-// longestExtreme returns the longest run of equal samples at either extreme and
-// its first index.
-func longestExtreme(xs []float64) (run, at int) {
-	if len(xs) == 0 {
-		return 0, 0
-	}
-	low, high := xs[0], xs[0]
-	for _, x := range xs {
-		low, high = min(low, x), max(high, x)
-	}
-	for i := 0; i < len(xs); {
-		j := i + 1
-		for j < len(xs) && xs[j] == xs[i] {
-			j++
-		}
-		if (xs[i] == low || xs[i] == high) && j-i > run {
-			run, at = j-i, i
-		}
-		i = j
-	}
-	return run, at
-}

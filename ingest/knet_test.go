@@ -236,7 +236,7 @@ func TestKNETRefusals(t *testing.T) {
 		{"origin", edit(t, base, 1, "2041/03/04", "2041/13/04"), Hints{}, `case:1: Origin Time: expected a time as YYYY/MM/DD HH:MM:SS, found "2041/13/04 08:12:00"`},
 		{"rate missing", edit(t, base, 11, "100Hz", ""), Hints{}, `case:11: Sampling Freq(Hz): expected a number over zero, found ""`},
 		{"rate zero", edit(t, base, 11, "100Hz", "0Hz"), Hints{}, `case:11: Sampling Freq(Hz): expected a number over zero, found "0Hz"`},
-		{"rate too low", edit(t, edit(t, base, 11, "100Hz", "5Hz"), 12, "3", "60"), Hints{}, `case:18: dt: time step 0.2 s is outside 0.0001 to 0.1 s`},
+		{"rate too low", edit(t, edit(t, base, 11, "100Hz", "5Hz"), 12, "3", "60"), Hints{}, `case:18: dt: time step 0.2 s is outside 0.0005 to 0.1 s`},
 		{"duration negative", edit(t, base, 12, "3", "-3"), Hints{}, `case:12: Duration Time(s): expected a number over zero, found "-3"`},
 		{"too many announced", edit(t, base, 12, "3", "3e9"), Hints{}, `case:12: Duration Time(s): 100 Hz for 3e+09 s make no number of samples`},
 		{"announced beyond file", edit(t, base, 12, "3", "2e7"), Hints{}, `case:55: samples: truncated: announced 2000000000 values, found 300`},

@@ -80,7 +80,6 @@ func (l *Layout) channel(s *layoutSeries, i int, v layoutValues, step float64, h
 	if err := checkSentinels(&c, s.line); err != nil {
 		return c, err
 	}
-	warnClipping(&c, clippedRun+1)
 	warnOffset(&c)
 	scale(c.Acceleration, c.UnitMPS2)
 	return c, nil
@@ -98,7 +97,7 @@ func (l *Layout) unit(c *Channel, v layoutValues, column int, hints Hints) error
 	}
 	c.Unit, c.UnitMPS2 = unit.Name, unit.MPS2
 	if p, ok := l.stated(v, "peak", column); ok {
-		peak, err := numberWithin(p.text, -maxPlain, maxPlain)
+		peak, err := numberWithin(p.text, limits{-maxPlain, maxPlain})
 		if err != nil {
 			return refuse(p.line, "peak", "%w", err)
 		}
@@ -145,7 +144,7 @@ func (l *Layout) orient(c *Channel, v layoutValues, column int) error {
 	if !ok {
 		return nil
 	}
-	azimuthDeg, err := numberWithin(s.text, 0, 360)
+	azimuthDeg, err := numberWithin(s.text, limits{0, 360})
 	if err != nil {
 		return refuse(s.line, "azimuth_deg", "%w", err)
 	}

@@ -53,13 +53,13 @@ func checkQuantity(name, text string) error {
 	ok := true
 	switch name {
 	case "rate_hz":
-		_, err = numberWithin(text, 1/MaxStepS, 1/MinStepS)
+		_, err = numberWithin(text, limits{1/MaxStepS, 1/MinStepS})
 	case "count", "channels":
 		_, err = wholeNumber(text)
 	case "scale", "scale_divisor":
 		_, err = positiveNumber(text)
 	case "peak":
-		_, err = numberWithin(text, -maxPlain, maxPlain)
+		_, err = numberWithin(text, limits{-maxPlain, maxPlain})
 	case "start_time":
 		at, _, known := parseInstant(text)
 		if !known || at.IsZero() {

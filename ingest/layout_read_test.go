@@ -72,8 +72,8 @@ func TestLayoutMistakes(t *testing.T) {
 		{4, `numbers = { separator = "blanks", missing = [-999] }`, `case.toml:4: numbers.missing: expected texts, as in ["-999", "NaN"]`},
 
 		{5, `fixed = { unit = "m" }`, `case.toml:5: fixed.unit: "m" is a unit of length, not of acceleration`},
-		{5, `fixed = { dt_s = 2 }`, `case.toml:5: fixed.dt_s: 2 is outside 0.0001 to 0.1`},
-		{5, `fixed = { rate_hz = 0 }`, `case.toml:5: fixed.rate_hz: 0 is outside 10 to 10000`},
+		{5, `fixed = { dt_s = 2 }`, `case.toml:5: fixed.dt_s: 2 is outside 0.0005 to 0.1`},
+		{5, `fixed = { rate_hz = 0 }`, `case.toml:5: fixed.rate_hz: 0 is outside 10 to 2000`},
 		{5, `fixed = { scale = -1 }`, `case.toml:5: fixed.scale: expected a number over zero, found "-1"`},
 		{5, `fixed = { count = 1.5 }`, `case.toml:5: fixed.count: expected a whole number over zero, found "1.5"`},
 		{5, `fixed = { peak = "high" }`, `case.toml:5: fixed.peak: expected a number, found "high"`},

@@ -216,7 +216,6 @@ func (c *mseedChannel) convert() {
 		}
 	}
 	if c.counts {
-		warnClipping(&c.Channel, clippedRun)
 		removeMean(&c.Channel)
 		return
 	}

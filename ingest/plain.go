@@ -130,7 +130,6 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		if err := checkSentinels(&c, func(i int) int { return rows.line[i] }); err != nil {
 			return nil, err
 		}
-		warnClipping(&c, clippedRun+1)
 		warnOffset(&c)
 		warnLength(&c)
 		scale(c.Acceleration, unit.MPS2)

@@ -258,25 +258,27 @@ func describeText(c *Channel, s comment) {
 }
 
 // describeNumber sets a number; it reports false where a known key has none.
+// What check holds to limits of its own is taken as it is.
 func describeNumber(c *Channel, s comment) bool {
+	anything, corner := limits{math.Inf(-1), math.Inf(1)}, limits{1e-6, 1e4}
 	places := map[string]struct {
-		place     *Number
-		low, high float64
+		place *Number
+		limits
 	}{
-		"magnitude": {&c.Event.Magnitude, -2, 11}, "distance_km": {&c.DistanceKM, 0, 20100},
-		"depth_km": {&c.Event.DepthKM, -10, 800}, "vs30": {&c.Station.Vs30, 1, 1e4}, "vs30_m_s": {&c.Station.Vs30, 1, 1e4},
-		"event_latitude": {&c.Event.Latitude, -90, 90}, "event_longitude": {&c.Event.Longitude, -180, 360},
-		"station_latitude": {&c.Station.Latitude, -90, 90}, "latitude": {&c.Station.Latitude, -90, 90},
-		"station_longitude": {&c.Station.Longitude, -180, 360}, "longitude": {&c.Station.Longitude, -180, 360},
-		"elevation_m": {&c.Station.ElevationM, -500, 9000},
-		"low_cut_hz":  {&c.LowCutHz, 1e-6, 1e4}, "high_cut_hz": {&c.HighCutHz, 1e-6, 1e4},
+		"magnitude": {&c.Event.Magnitude, anything}, "distance_km": {&c.DistanceKM, anything},
+		"depth_km": {&c.Event.DepthKM, anything}, "vs30": {&c.Station.Vs30, anything}, "vs30_m_s": {&c.Station.Vs30, anything},
+		"event_latitude": {&c.Event.Latitude, anything}, "event_longitude": {&c.Event.Longitude, anything},
+		"station_latitude": {&c.Station.Latitude, anything}, "latitude": {&c.Station.Latitude, anything},
+		"station_longitude": {&c.Station.Longitude, anything}, "longitude": {&c.Station.Longitude, anything},
+		"elevation_m": {&c.Station.ElevationM, limits{-500, 9000}},
+		"low_cut_hz":  {&c.LowCutHz, corner}, "high_cut_hz": {&c.HighCutHz, corner},
 	}
 	p, ok := places[s.key]
 	if !ok {
 		return true
 	}
 	v, ok := parseNumber([]byte(s.value))
-	if !ok || v < p.low || v > p.high {
+	if !ok || !p.hold(v) {
 		return false
 	}
 	*p.place = Known(v)

@@ -199,7 +199,7 @@ func TestPlainRefusals(t *testing.T) {
 		{"step unreadable", head([]string{"# dt = fast"}, values), unit, `case:1: dt: expected a time step over zero in s, found "fast"`},
 		{"step negative", head([]string{"# dt = -0.01"}, values), unit, `case:1: dt: expected a time step over zero in s, found "-0.01"`},
 		{"rate zero", head([]string{"# rate = 0 Hz"}, values), unit, `case:1: rate: expected a sampling rate over zero in Hz, found "0 Hz"`},
-		{"step out of range", head([]string{"# dt = 0.5"}, values), unit, `case:2: dt: time step 0.5 s is outside 0.0001 to 0.1 s`},
+		{"step out of range", head([]string{"# dt = 0.5"}, values), unit, `case:2: dt: time step 0.5 s is outside 0.0005 to 0.1 s`},
 		{"time unit", head([]string{"time (min),acc (g)"}, timed(even(20, 0.02), "%.2f", ",")), Hints{}, `case:1: time: unknown unit "min" of time; known are s and ms`},
 
 		{"missing sample", times(shifted(30, 0.01)), unit, `case:31: time: step 0.02 where the median is 0.01 (from 0.01 to 0.02): a missing sample`},
