@@ -57,6 +57,7 @@ var formats = []Format{
 	californiaV2{},
 	cosmos{},
 	esm{},
+	jma{},
 	knet{},
 	at2{},
 	miniSEED{},

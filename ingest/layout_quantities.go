@@ -53,7 +53,7 @@ func checkQuantity(name, text string) error {
 	ok := true
 	switch name {
 	case "rate_hz":
-		_, err = numberWithin(text, limits{1/MaxStepS, 1/MinStepS})
+		_, err = numberWithin(text, limits{1 / MaxStepS, 1 / MinStepS})
 	case "count", "channels":
 		_, err = wholeNumber(text)
 	case "scale", "scale_divisor":

@@ -16,8 +16,9 @@ func BenchmarkParse(b *testing.B) {
 	counts.seconds = n / counts.rate
 	for name, lines := range map[string][]string{
 		"california-v2": v2.lines(), "cosmos": cosmos.lines(), "at2": at2.lines(), "knet": counts.lines(),
-		"esm":   newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
-		"plain": timed(even(n, 0.005), "%.3f", " "),
+		"esm":     newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
+		"jma-csv": jmaLong(n),
+		"plain":   timed(even(n, 0.005), "%.3f", " "),
 	} {
 		hints := Hints{}
 		if name == "plain" {

@@ -250,7 +250,7 @@ func TestPlainRefusals(t *testing.T) {
 // TestPlainKeywordHeader has a header of keywords that are no comments: what it
 // says of unit and step is not taken on trust.
 func TestPlainKeywordHeader(t *testing.T) {
-	lines := []string{"SITE CODE= CDH9", "LAT.= 30.5", "SAMPLING RATE= 100Hz", "UNIT  = gal(cm/s/s)", "INITIAL TIME = 2041 03 04 08 12 00", "NS,EW,UD"}
+	lines := []string{"STATION= CDH9", "LAT.= 30.5", "SAMPLING RATE= 100Hz", "UNIT  = gal(cm/s/s)", "INITIAL TIME = 2041 03 04 08 12 00", "NS,EW,UD"}
 	for i, v := range column(20, "%.3f") {
 		lines = append(lines, fmt.Sprintf("%s,%d,%d", v, i%7-3, i%5-2))
 	}
