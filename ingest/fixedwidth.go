@@ -13,6 +13,10 @@ import (
 // decimals it shows: no implied point is ever put in.
 const pointExplicit = -1
 
+// bareExponent as the decimals says that besides all numbers have an exponent of
+// one or two digits without its letter, as in 1.2345-1.
+const bareExponent = -2
+
 // The bounds of a Fortran edit descriptor that is taken for a statement and not
 // for damage.
 const (
@@ -24,7 +28,7 @@ const (
 type fieldLayout struct {
 	perLine, width int
 	// decimals is the number of digits after the point that is implied where a
-	// field shows none, as Fortran reads Fw.d, or pointExplicit.
+	// field shows none, as Fortran reads Fw.d, or pointExplicit or bareExponent.
 	decimals int
 }
 
@@ -119,7 +123,7 @@ func (l fieldLayout) appendLine(dst []float64, b []byte, n int, points *pointCou
 		for len(field) > 0 && field[len(field)-1] == ' ' {
 			field = field[:len(field)-1]
 		}
-		v, ok := parseNumber(field)
+		v, ok := l.number(field)
 		if !ok {
 			return dst
 		}
@@ -131,6 +135,14 @@ func (l fieldLayout) appendLine(dst []float64, b []byte, n int, points *pointCou
 		dst = append(dst, v)
 	}
 	return dst
+}
+
+// number reads a field without blanks round it.
+func (l fieldLayout) number(field []byte) (float64, bool) {
+	if l.decimals == bareExponent {
+		return parseBareExponent(field)
+	}
+	return parseNumber(field)
 }
 
 // placePoint divides a value whose field shows no decimal point by the power of
@@ -172,7 +184,7 @@ func (l fieldLayout) cause(t *Text, line, got, n int, name string, count, total 
 		return refuse(line, name, "line holds %d values, expected %d", got, n)
 	}
 	field := bytes.TrimSpace(b[lo:min(lo+l.width, len(b))])
-	_, number := parseNumber(field)
+	_, number := l.number(field)
 	switch {
 	case len(field) == 0:
 		return refuse(line, name, "value %d is blank", total+1)

@@ -224,3 +224,31 @@ func parseMagnitude(s string) (Number, string) {
 	}
 	return Number{}, ""
 }
+
+var bearingText = regexp.MustCompile(`(?i)^\s*([NS])\s*(\d{1,2}(?:\.\d*)?)\s*([EW])\s*$`)
+
+// bearing reads a direction as surveyors write it, an angle from north or south
+// to the east or west, as degrees clockwise from north in [0, 360): S14E is 166.
+func bearing(s string) (deg float64, ok bool) {
+	m := bearingText.FindStringSubmatch(s)
+	if m == nil {
+		return 0, false
+	}
+	angle := decimal(m[2])
+	if angle > 90 {
+		return 0, false
+	}
+	if strings.EqualFold(m[3], "W") {
+		angle = -angle
+	}
+	if strings.EqualFold(m[1], "S") {
+		angle = 180 - angle
+	}
+	return math.Mod(angle+360, 360), true
+}
+
+// angleBetween returns the angle between two directions in degrees, at most 180.
+func angleBetween(a, b float64) float64 {
+	off := math.Mod(math.Abs(a-b), 360)
+	return min(off, 360-off)
+}

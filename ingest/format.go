@@ -60,6 +60,7 @@ var formats = []Format{
 	jma{},
 	knet{},
 	at2{},
+	smc{},
 	miniSEED{},
 }
 

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"bytes"
 	"encoding/binary"
 	"math"
 	"math/bits"
@@ -217,4 +218,16 @@ func parseSlow(b []byte) (float64, bool) {
 	}
 	value, err := strconv.ParseFloat(string(text), 64)
 	return value, err == nil
+}
+
+// parseBareExponent reads a mantissa with a point and an exponent of a sign and
+// one or two digits without letter. It is not part of parseNumber, where it would
+// make one number of two that touch.
+func parseBareExponent(b []byte) (float64, bool) {
+	at := bytes.LastIndexAny(b, "+-")
+	if at < 1 || len(b)-at > 3 || bytes.IndexByte(b[:at], '.') < 0 {
+		return 0, false
+	}
+	var room [64]byte
+	return parseNumber(append(append(append(room[:0], b[:at]...), 'E'), b[at:]...))
 }

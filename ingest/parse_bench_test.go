@@ -9,16 +9,18 @@ import (
 // every reader.
 func BenchmarkParse(b *testing.B) {
 	const n = 20000
-	v2, cosmos, at2, counts := v2Bridge, cosmosBase, at2North, knetNS
+	v2, cosmos, at2, counts, smc := v2Bridge, cosmosBase, at2North, knetNS, smcNorth
 	v2.n, v2.x = n, ring(n, 25, 1.99, 0.999)
 	cosmos.x = ring(n, -213.4, 1.99, 0.999)
 	at2.x, at2.pair = ring(n, 0.3, 1.99, 0.999), "NPTS=  20000, DT=   .0050 SEC"
 	counts.seconds = n / counts.rate
+	smc.x = ring(n, -187, 1.99, 0.999)
 	for name, lines := range map[string][]string{
 		"california-v2": v2.lines(), "cosmos": cosmos.lines(), "at2": at2.lines(), "knet": counts.lines(),
 		"esm":     newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
 		"jma-csv": jmaLong(n),
 		"plain":   timed(even(n, 0.005), "%.3f", " "),
+		"smc":     smc.lines(),
 	} {
 		hints := Hints{}
 		if name == "plain" {
