@@ -50,6 +50,17 @@ func readHeader(t *Text, line, count int, l fieldLayout, name string, null float
 	return h, last + 1, nil
 }
 
+// whole refuses a header of integers that has a fraction in it: its lines are
+// not where they should be.
+func (h *numericHeader) whole() error {
+	for i, v := range h.values {
+		if v != math.Trunc(v) && !math.IsNaN(v) {
+			return refuse(h.line(i+1), h.what(i+1), "%g is not an integer", v)
+		}
+	}
+	return nil
+}
+
 // at returns the quantity at position i, unknown where the file does not state
 // it or has no such position.
 func (h *numericHeader) at(i int) Number {
@@ -128,4 +139,19 @@ func (p printed) agrees(q printed) bool {
 	// The last term covers the binary rounding of the decimals.
 	slack := p.half + q.half
 	return math.Abs(p.value-q.value) <= slack+float64(1e-9*math.Abs(p.value))
+}
+
+// finest returns the one of several statements of a time step in s that is
+// printed to most digits. All must agree with the first.
+func finest(stated []printed) (printed, error) {
+	best := stated[0]
+	for _, p := range stated[1:] {
+		if !p.agrees(stated[0]) {
+			return printed{}, refuse(stated[0].line, "dt", "time step %g s, but line %d says %g s", stated[0].value, p.line, p.value)
+		}
+		if p.half < best.half {
+			best = p
+		}
+	}
+	return best, nil
 }

@@ -193,7 +193,7 @@ func position(latitude, longitude Number) (Number, Number) {
 	return latitude, longitude
 }
 
-// decimal reads digits that a pattern has already matched.
+// decimal reads a number that a pattern has already matched, 0 where it is none.
 func decimal(s string) float64 {
 	v, _ := parseNumber([]byte(s))
 	return v
@@ -251,4 +251,24 @@ func bearing(s string) (deg float64, ok bool) {
 func angleBetween(a, b float64) float64 {
 	off := math.Mod(math.Abs(a-b), 360)
 	return min(off, 360-off)
+}
+
+// findText returns the groups of pattern in the first of the lines first to last
+// that has it, and that line; nil and 0 where none has.
+func findText(t *Text, first, last int, pattern *regexp.Regexp) (groups []string, line int) {
+	for n := first; n <= last; n++ {
+		if m := pattern.FindStringSubmatch(words(t, n)); m != nil {
+			return m, n
+		}
+	}
+	return nil, 0
+}
+
+// sitingFromName takes the siting from the station's name, for formats that have
+// no other words for the place of the instrument.
+func sitingFromName(c *Channel) {
+	c.Siting = SitingFromWords(c.Station.Name)
+	if c.Siting != SitingUnknown {
+		c.warn("siting %s is taken from the station's name", c.Siting)
+	}
 }

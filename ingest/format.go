@@ -61,6 +61,7 @@ var formats = []Format{
 	knet{},
 	at2{},
 	smc{},
+	newZealand{},
 	miniSEED{},
 }
 

@@ -15,6 +15,8 @@ func BenchmarkParse(b *testing.B) {
 	at2.x, at2.pair = ring(n, 0.3, 1.99, 0.999), "NPTS=  20000, DT=   .0050 SEC"
 	counts.seconds = n / counts.rate
 	smc.x = ring(n, -187, 1.99, 0.999)
+	nz := nzRaw[0]
+	nz.x = ring(n, 2080.5, 1.99, 0.999)
 	for name, lines := range map[string][]string{
 		"california-v2": v2.lines(), "cosmos": cosmos.lines(), "at2": at2.lines(), "knet": counts.lines(),
 		"esm":     newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),

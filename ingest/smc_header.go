@@ -37,10 +37,8 @@ func readSMCHeader(t *Text) (*smcHeader, error) {
 	if h.integers, _, err = readHeader(t, smcIntegerLine, smcIntegerCount, smcIntegers, "integer", smcNullInteger); err != nil {
 		return nil, err
 	}
-	for i, v := range h.integers.values {
-		if v != math.Trunc(v) && !math.IsNaN(v) {
-			return nil, refuse(h.integers.line(i+1), h.integers.what(i+1), "%g is not an integer", v)
-		}
+	if err = h.integers.whole(); err != nil {
+		return nil, err
 	}
 	h.reals, _, err = readHeader(t, smcRealLine, smcRealCount, smcReals, "real", math.NaN())
 	return h, err
@@ -90,12 +88,11 @@ func (h *smcHeader) passComments(c *Channel) (int, error) {
 // find returns the first group of pattern in text lines 2 to 11 and its line,
 // "" and 0 where there is none. A lone asterisk is an empty value.
 func (h *smcHeader) find(pattern *regexp.Regexp) (string, int) {
-	for n := 2; n <= smcTextLines; n++ {
-		if m := pattern.FindStringSubmatch(words(h.text, n)); m != nil {
-			return strings.Trim(m[1], " *"), n
-		}
+	m, line := findText(h.text, 2, smcTextLines, pattern)
+	if m == nil {
+		return "", 0
 	}
-	return "", 0
+	return strings.Trim(m[1], " *"), line
 }
 
 // findNumber returns the first group of pattern as a quantity.
@@ -236,21 +233,17 @@ func (h *smcHeader) both(c *Channel, what string, text Number, line int, real Nu
 	return text
 }
 
-// describeStation reads name and place of the station. A file has no words for
-// the place of the instrument but those in the station's name.
+// describeStation reads name and place of the station.
 func (h *smcHeader) describeStation(c *Channel) {
 	s := &c.Station
 	s.Name, _ = h.find(smcStation)
 	s.Name = strings.Join(strings.Fields(s.Name), " ")
 	s.Latitude, s.Longitude = position(h.real(11), h.real(12))
 	s.ElevationM = h.real(13)
-	c.Siting = SitingFromWords(s.Name)
-	if c.Siting != SitingUnknown {
-		c.warn("siting %s is taken from the station's name", c.Siting)
-	}
+	sitingFromName(c)
 	c.Siting = sitingWithHeight(c, c.Siting, h.real(16))
 	text, line := h.findNumber(smcDistance)
-	distance := h.both(c, "epicentral distance", text, line, h.real(17), 17, 0.5+0.01*text.Value)
+	distance := h.both(c, "epicentral distance", text, line, h.real(17), 17, 0.5+float64(0.01*text.Value))
 	if distance.Value > 0 {
 		c.Distances.EpicentralKM = distance
 	}

@@ -13,8 +13,7 @@ import (
 // lines of text, 100 integers as 16I5, 100 reals as 8F10, then blocks of
 // acceleration, velocity and displacement, of which only the first is kept. It
 // knows the response spectra (V3) that are distributed beside them and passes
-// them over, and it refuses uncorrected files (V1) and the New Zealand layout
-// that opens with the same words.
+// them over, and it refuses uncorrected files (V1).
 //
 // Sources: files as distributed by the California Geological Survey, of 1979 to
 // 2022; the reports of the California Division of Mines and Geology that
@@ -52,7 +51,7 @@ func (californiaV2) Info() Info {
 func (californiaV2) Sniff(c *Content) string {
 	t := c.Text
 	first := strings.ToLower(words(t, nextText(t, 1)))
-	if strings.Contains(first, "(format v") {
+	if strings.Contains(first, "(format v") || isNewZealand(t, nextText(t, 1)) {
 		return ""
 	}
 	for _, opening := range []string{v2Opening, v1Opening, spectraOpening} {
@@ -77,8 +76,6 @@ func (californiaV2) Parse(content *Content, hints Hints) ([]Channel, error) {
 	switch {
 	case opens(first, spectraOpening):
 		return nil, &NotMotionError{Reason: "response and Fourier spectra, not a time series"}
-	case opens(strings.ToLower(words(t, line+1)), "site"):
-		return nil, refuse(line+1, "", "accelerogram in the New Zealand layout, which is not read")
 	case opens(first, v1Opening):
 		return nil, refuse(line, "", "uncorrected accelerogram (V1 layout), which is not read; use the corrected V2 file")
 	}
@@ -308,14 +305,9 @@ func (b *v2Block) chooseStep(h *v2Heading, reals *numericHeader) (printed, error
 	if p, ok := h.interval(); ok {
 		stated = append(stated, p)
 	}
-	best := stated[0]
-	for _, p := range stated[1:] {
-		if !p.agrees(b.step) {
-			return printed{}, refuse(b.step.line, "dt", "time step %g s, but line %d says %g s", b.step.value, p.line, p.value)
-		}
-		if p.half < best.half {
-			best = p
-		}
+	best, err := finest(stated)
+	if err != nil {
+		return printed{}, err
 	}
 	if !(best.value > 0) || math.IsInf(best.value, 0) {
 		return printed{}, refuse(best.line, "dt", "time step %g s is not positive", best.value)

@@ -241,7 +241,6 @@ func TestV2Refusals(t *testing.T) {
 		{"no integers", edit(t, base, 26, "    7", "seven"), Hints{}, `case:26: integer header: expected 16 integers of 5 characters after 25 lines of text, found "seven    0    0    0    0    0    0    …"`},
 		{"real no number", edit(t, base, 41, " 25.000000", " 25.0 0000"), Hints{}, `case:41: real 66: "25.0 0000" is not a number`},
 		{"text after the end", append(slices.Clone(base), "the end"), Hints{}, `case:86: text "the end" after the end of a channel, expected the heading of another`},
-		{"New Zealand layout", edit(t, base, 2, "Uncorrected", "Site QXYZ "), Hints{}, "case:2: accelerogram in the New Zealand layout, which is not read"},
 		{"uncorrected", edit(t, base, 1, "Corrected", "Uncorrected"), Hints{}, "case:1: uncorrected accelerogram (V1 layout), which is not read; use the corrected V2 file"},
 	}
 	for _, tc := range cases {
