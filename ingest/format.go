@@ -55,6 +55,7 @@ type Format interface {
 // the last resort and no member: Parse tries them when none of these fits.
 var formats = []Format{
 	californiaV2{},
+	californiaV1{},
 	cosmos{},
 	esm{},
 	jma{},

@@ -15,14 +15,16 @@ func BenchmarkParse(b *testing.B) {
 	at2.x, at2.pair = ring(n, 0.3, 1.99, 0.999), "NPTS=  20000, DT=   .0050 SEC"
 	counts.seconds = n / counts.rate
 	smc.x = ring(n, -187, 1.99, 0.999)
-	nz := nzRaw[0]
+	v1, nz := v1East, nzRaw[0]
+	v1.n, v1.x = n, ring(n, 0.312, 1.99, 0.999)
 	nz.x = ring(n, 2080.5, 1.99, 0.999)
 	for name, lines := range map[string][]string{
 		"california-v2": v2.lines(), "cosmos": cosmos.lines(), "at2": at2.lines(), "knet": counts.lines(),
-		"esm":     newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
-		"jma-csv": jmaLong(n),
-		"plain":   timed(even(n, 0.005), "%.3f", " "),
-		"smc":     smc.lines(),
+		"esm":           newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
+		"jma-csv":       jmaLong(n),
+		"plain":         timed(even(n, 0.005), "%.3f", " "),
+		"smc":           smc.lines(),
+		"california-v1": v1.lines(), "smc": smc.lines(), "new-zealand": nzFile([]nzSample{nz, nz, nz}),
 	} {
 		hints := Hints{}
 		if name == "plain" {

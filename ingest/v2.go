@@ -13,7 +13,7 @@ import (
 // lines of text, 100 integers as 16I5, 100 reals as 8F10, then blocks of
 // acceleration, velocity and displacement, of which only the first is kept. It
 // knows the response spectra (V3) that are distributed beside them and passes
-// them over, and it refuses uncorrected files (V1).
+// them over.
 //
 // Sources: files as distributed by the California Geological Survey, of 1979 to
 // 2022; the reports of the California Division of Mines and Geology that
@@ -43,18 +43,24 @@ const (
 func (californiaV2) Info() Info {
 	return Info{
 		Name: "california-v2", Title: "California strong-motion V2, fixed-width text", Channels: "one or more",
-		Unit: "cm/s²", NotRead: "uncorrected V1 files",
+		Unit: "cm/s²",
 	}
 }
 
 // Sniff looks at the first words.
 func (californiaV2) Sniff(c *Content) string {
-	t := c.Text
-	first := strings.ToLower(words(t, nextText(t, 1)))
-	if strings.Contains(first, "(format v") || isNewZealand(t, nextText(t, 1)) {
+	return sniffCalifornia(c.Text, v2Opening, spectraOpening)
+}
+
+// sniffCalifornia looks for one of the openings in a first line that does not
+// state the version of another format, over a line that is not of New Zealand.
+func sniffCalifornia(t *Text, openings ...string) string {
+	line := nextText(t, 1)
+	first := strings.ToLower(words(t, line))
+	if strings.Contains(first, "(format v") || isNewZealand(t, line) {
 		return ""
 	}
-	for _, opening := range []string{v2Opening, v1Opening, spectraOpening} {
+	for _, opening := range openings {
 		if opens(first, opening) {
 			return "first line begins with " + strings.ToUpper(opening[:1]) + opening[1:]
 		}
@@ -70,26 +76,26 @@ func opens(heading, opening string) bool {
 
 // Parse reads all channels of the file.
 func (californiaV2) Parse(content *Content, hints Hints) ([]Channel, error) {
-	t := content.Text
-	line := nextText(t, 1)
-	first := strings.ToLower(words(t, line))
-	switch {
-	case opens(first, spectraOpening):
+	if opens(strings.ToLower(words(content.Text, nextText(content.Text, 1))), spectraOpening) {
 		return nil, &NotMotionError{Reason: "response and Fourier spectra, not a time series"}
-	case opens(first, v1Opening):
-		return nil, refuse(line, "", "uncorrected accelerogram (V1 layout), which is not read; use the corrected V2 file")
 	}
+	return readCalifornia(content.Text, v2Opening, hints, readV2Channel)
+}
+
+// readCalifornia reads channel after channel to the end of the text. Each begins
+// with the opening; read returns it and the line after it.
+func readCalifornia(t *Text, opening string, hints Hints, read func(*Text, int, Hints) (*Channel, int, error)) ([]Channel, error) {
 	var channels []Channel
-	for line <= t.Len() {
-		if !opens(strings.ToLower(words(t, line)), v2Opening) {
+	for line := nextText(t, 1); line <= t.Len(); line = nextText(t, line) {
+		if !opens(strings.ToLower(words(t, line)), opening) {
 			return nil, refuse(line, "", "text %s after the end of a channel, expected the heading of another", found(words(t, line)))
 		}
-		c, next, err := readV2Channel(t, line, hints)
+		c, next, err := read(t, line, hints)
 		if err != nil {
 			return nil, err
 		}
 		channels = append(channels, *c)
-		line = nextText(t, next)
+		line = next
 	}
 	return channels, nil
 }
@@ -114,7 +120,9 @@ func readV2Channel(t *Text, line int, hints Hints) (*Channel, int, error) {
 	h.describe(c, integers, reals)
 	integers.warnGaps(c)
 	reals.warnGaps(c)
-	next, err = readV2Blocks(t, next, c, h, integers, reals, hints)
+	next, err = readV2Blocks(t, next, v2Opening, c, func(b *v2Block, line int) error {
+		return b.settle(c, h, line, integers, reals, hints)
+	})
 	return c, next, err
 }
 
@@ -156,7 +164,7 @@ type v2Block struct {
 }
 
 var (
-	v2CountLine  = regexp.MustCompile(`(?i)^\s*(\S+)\s*points of\s+(accel|veloc|displ)\w*\s+data equally spaced at\s*(\S+)\s*sec(.*)$`)
+	v2CountLine  = regexp.MustCompile(`(?i)^\s*(\S+)\s*points of\s+(?:(?:raw|uncor\w*\.?)\s+)?(accel|veloc|displ)\w*\s+data equally spaced at\s*(\S+)\s*sec(.*)$`)
 	v2UnitText   = regexp.MustCompile(`(?i)(?:\bunits:\s*|\bin\s+)([^\s()]+)`)
 	v2FormatText = regexp.MustCompile(`(?i)\(\s*\d*\s*[FEDG]\s*\d+[^()]*\)`)
 )
@@ -193,12 +201,14 @@ func readV2Count(t *Text, line int) (*v2Block, error) {
 }
 
 // readV2Blocks reads the blocks from the given line on, keeps the acceleration
-// in c, and returns the line after the end line.
-func readV2Blocks(t *Text, line int, c *Channel, h *v2Heading, integers, reals *numericHeader, hints Hints) (int, error) {
+// in c, and returns the line after the end line. The channel may also end at the
+// opening of the next. settle takes step, unit and peak of the acceleration from
+// its count line, whose line it is given.
+func readV2Blocks(t *Text, line int, opening string, c *Channel, settle func(*v2Block, int) error) (int, error) {
 	announced := 0
 	for {
 		line = nextText(t, line)
-		if line > t.Len() || isEndLine(bytes.TrimSpace(t.Bytes(line))) || opens(strings.ToLower(words(t, line)), v2Opening) {
+		if line > t.Len() || isEndLine(bytes.TrimSpace(t.Bytes(line))) || opens(strings.ToLower(words(t, line)), opening) {
 			break
 		}
 		block, err := readV2Count(t, line)
@@ -218,7 +228,7 @@ func readV2Blocks(t *Text, line int, c *Channel, h *v2Heading, integers, reals *
 		case c.Acceleration != nil:
 			return 0, refuse(line, "accel", "second block of acceleration in one channel")
 		}
-		if err := block.settle(c, h, line, integers, reals, hints); err != nil {
+		if err := settle(block, line); err != nil {
 			return 0, err
 		}
 		announced, c.Line = block.count, line+1

@@ -6,6 +6,8 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"reflect"
+	"slices"
 	"strconv"
 	"strings"
 	"testing"
@@ -151,6 +153,75 @@ func TestRealV2Descriptions(t *testing.T) {
 	}
 	if o := new.Orientation; o.Axis != AxisHorizontal || o.AzimuthDeg.Known || o.Order != 1 || o.Label != "Long" || new.ChannelCode != "6" {
 		t.Errorf("orientation = %+v of channel %s", o, new.ChannelCode)
+	}
+}
+
+// TestRealV2Together reads the channels of each earthquake from one file, as the
+// network also distributes them, and expects the channels of the single files.
+func TestRealV2Together(t *testing.T) {
+	folders := map[string][]string{}
+	for _, path := range realFiles(t, ".V2") {
+		folders[filepath.Dir(path)] = append(folders[filepath.Dir(path)], path)
+	}
+	for dir, paths := range folders {
+		var together []byte
+		var want []Channel
+		for _, path := range paths {
+			data := readFile(t, path)
+			_, channels, err := Parse(path, data, Hints{})
+			if err != nil {
+				t.Fatal(err)
+			}
+			together, want = append(together, data...), append(want, channels...)
+		}
+		format, got, err := Parse(dir, together, Hints{})
+		if err != nil || format != "california-v2" || len(got) != len(want) {
+			t.Errorf("%s: Parse = %s, %d channels, %v, want %d", dir, format, len(got), err, len(want))
+			continue
+		}
+		for i := range want {
+			got[i].Line = want[i].Line
+			if !reflect.DeepEqual(got[i], want[i]) {
+				t.Errorf("%s: channel %d differs from that of its own file", dir, i+1)
+			}
+		}
+	}
+}
+
+// TestRealV1Text makes an uncorrected channel of each real corrected one, whose
+// text lines 2 to 14 are those of the uncorrected record, and expects the same
+// description from them alone. The samples stay the corrected ones.
+func TestRealV1Text(t *testing.T) {
+	for _, path := range realFiles(t, ".V2") {
+		data := readFile(t, path)
+		_, channels, err := Parse(path, data, Hints{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		want := channels[0]
+		lines := bytes.Split(data, []byte("\n"))
+		block := lines[45 : 46+(len(want.Acceleration)+7)/8]
+		text := append(slices.Clone(lines[1:14]), block...)
+		format, channels, err := Parse(path, bytes.Join(text, []byte("\n")), Hints{})
+		if err != nil || format != "california-v1" || len(channels) != 1 {
+			t.Errorf("%s: Parse = %s, %d channels, %v", path, format, len(channels), err)
+			continue
+		}
+		got := channels[0]
+		if !equalSeries(got.Acceleration, want.Acceleration) || got.StepS != want.StepS || got.Processing != ProcessingRaw {
+			t.Errorf("%s: other samples, or dt %g s, %s", path, got.StepS, got.Processing)
+		}
+		// The numbers of the corrected file have more digits of the position.
+		near := math.Abs(got.Station.Latitude.Value-want.Station.Latitude.Value) <= 0.0005001 &&
+			math.Abs(got.Station.Longitude.Value-want.Station.Longitude.Value) <= 0.0005001
+		got.Station.Latitude, got.Station.Longitude = want.Station.Latitude, want.Station.Longitude
+		if !near || got.Station != want.Station || got.Event != want.Event || !got.Start.Equal(want.Start) ||
+			got.ChannelCode != want.ChannelCode || got.Instrument != want.Instrument || got.Siting != want.Siting {
+			t.Errorf("%s: described as %+v %+v %v, channel %s at %q", path, got.Station, got.Event, got.Start, got.ChannelCode, got.Instrument)
+		}
+		if !got.Orientation.same(want.Orientation) {
+			t.Errorf("%s: orientation %+v, want %+v", path, got.Orientation, want.Orientation)
+		}
 	}
 }
 

@@ -241,7 +241,6 @@ func TestV2Refusals(t *testing.T) {
 		{"no integers", edit(t, base, 26, "    7", "seven"), Hints{}, `case:26: integer header: expected 16 integers of 5 characters after 25 lines of text, found "seven    0    0    0    0    0    0    …"`},
 		{"real no number", edit(t, base, 41, " 25.000000", " 25.0 0000"), Hints{}, `case:41: real 66: "25.0 0000" is not a number`},
 		{"text after the end", append(slices.Clone(base), "the end"), Hints{}, `case:86: text "the end" after the end of a channel, expected the heading of another`},
-		{"uncorrected", edit(t, base, 1, "Corrected", "Uncorrected"), Hints{}, "case:1: uncorrected accelerogram (V1 layout), which is not read; use the corrected V2 file"},
 	}
 	for _, tc := range cases {
 		t.Run(tc.name, func(t *testing.T) {
@@ -304,7 +303,8 @@ func TestV2SpectraAreNotMotion(t *testing.T) {
 func TestV2Sniff(t *testing.T) {
 	for first, want := range map[string]bool{
 		"Corrected accelerogram   99321": true, "CORRECTED ACCELEROGRAM": true, "  corrected accelerogram": true,
-		"Uncorrected accelerogram": true, "Response and Fourier amplitude spectra (80 periods": true,
+		"Uncorrected accelerogram": false, "Response and Fourier amplitude spectra (80 periods": true,
+		"Corrected accelerogram\nSite QXYZ":                            false,
 		"Corrected acceleration    (Format v01.20 with 13 text lines)": false,
 		"Corrected accelerogram (Format v01.20 with 13 text lines)":    false,
 		"2 CORRECTED ACCELEROGRAM":                                     false, "time,acc": false, "Uncorrected": false,
