@@ -142,10 +142,13 @@ func (p printed) agrees(q printed) bool {
 }
 
 // finest returns the one of several statements of a time step in s that is
-// printed to most digits. All must agree with the first.
+// printed to most digits. All must be positive and agree with the first.
 func finest(stated []printed) (printed, error) {
 	best := stated[0]
-	for _, p := range stated[1:] {
+	for _, p := range stated {
+		if !(p.value > 0) {
+			return printed{}, refuse(p.line, "dt", "time step %g s is not positive", p.value)
+		}
 		if !p.agrees(stated[0]) {
 			return printed{}, refuse(stated[0].line, "dt", "time step %g s, but line %d says %g s", stated[0].value, p.line, p.value)
 		}

@@ -59,9 +59,6 @@ func (h *nzHeading) interval() (printed, error) {
 		if err != nil {
 			return printed{}, err
 		}
-		if !(p.value > 0) {
-			return printed{}, refuse(p.line, "dt", "time step %g s is not positive", p.value)
-		}
 		steps = append(steps, p)
 		if nzOfAcceleration.MatchString(s) {
 			own = append(own, p)

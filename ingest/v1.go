@@ -1,9 +1,6 @@
 package ingest
 
-import (
-	"math"
-	"regexp"
-)
+import "regexp"
 
 // californiaV1 reads the uncorrected accelerograms (V1) of the Californian
 // fixed-width text layout, of one channel or of several after one another: text,
@@ -170,14 +167,7 @@ func (h *v1Heading) step(b *v2Block) (printed, error) {
 		}
 		stated = append(stated, p)
 	}
-	step, err := finest(stated)
-	if err != nil {
-		return printed{}, err
-	}
-	if !(step.value > 0) || math.IsInf(step.value, 0) {
-		return printed{}, refuse(step.line, "dt", "time step %g s is not positive", step.value)
-	}
-	return step, nil
+	return finest(stated)
 }
 
 // peak takes the peak of the text where its digits say enough.

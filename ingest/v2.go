@@ -301,9 +301,6 @@ func (b *v2Block) checkCount(h *v2Heading, line int, integers *numericHeader) er
 // whichever is printed to most digits. All that are stated must agree within
 // what their digits show.
 func (b *v2Block) chooseStep(h *v2Heading, reals *numericHeader) (printed, error) {
-	if !(b.step.value > 0) {
-		return printed{}, refuse(b.step.line, "dt", "time step %g s is not positive", b.step.value)
-	}
 	stated := []printed{b.step}
 	if n := reals.at(61); n.Known && n.Value != 0 {
 		p, err := newPrinted(string(reals.field(61)), reals.line(61), "dt")
@@ -315,14 +312,7 @@ func (b *v2Block) chooseStep(h *v2Heading, reals *numericHeader) (printed, error
 	if p, ok := h.interval(); ok {
 		stated = append(stated, p)
 	}
-	best, err := finest(stated)
-	if err != nil {
-		return printed{}, err
-	}
-	if !(best.value > 0) || math.IsInf(best.value, 0) {
-		return printed{}, refuse(best.line, "dt", "time step %g s is not positive", best.value)
-	}
-	return best, nil
+	return finest(stated)
 }
 
 // valueCount reads a count of values. Anything above 2³¹ is no count.
