@@ -181,7 +181,8 @@ func (s *Snapshot) records(ctx context.Context, d Details, condition string, arg
 			return nil, fmt.Errorf("read records: %w", err)
 		}
 		r := v.Record
-		r.Event, r.Station = events[v.event.Int64], stations[v.station.Int64]
+		r.EventID, r.StationID = v.event.Int64, v.station.Int64
+		r.Event, r.Station = events[r.EventID], stations[r.StationID]
 		if r.Start, err = parseTime(v.start); err != nil {
 			return nil, err
 		}

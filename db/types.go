@@ -70,6 +70,8 @@ type Record struct {
 	Siting     string
 	Start      time.Time
 	Distances  Distances
+	// The rows of the two, 0 where unknown; for reading only.
+	EventID, StationID int64
 }
 
 // Distances are from the earthquake to the station, in km.

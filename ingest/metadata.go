@@ -133,6 +133,11 @@ func (m *Metadata) addEvents(events []fdsnxml.Event) {
 	}
 }
 
+// IsEmpty reports whether no document has been read.
+func (m *Metadata) IsEmpty() bool {
+	return m == nil || len(m.events)+len(m.inventory.Stations)+len(m.inventory.Channels) == 0
+}
+
 // Events returns the events in the order of their origin times. The caller must
 // not change them.
 func (m *Metadata) Events() []CatalogueEvent {
@@ -169,33 +174,20 @@ func lastOfID(id string) string {
 	return id[strings.LastIndexAny(id, "/#")+1:]
 }
 
-// CompleteStation fills in what the channel's station lacks of coordinates,
-// elevation and name, by network and code. What the file states stays. completed
-// holds nothing but what was filled in; ok is false where that is nothing.
-func (m *Metadata) CompleteStation(c *Channel) (completed Channel, ok bool) {
-	s := &c.Station
-	if m == nil || s.Network == "" || s.Code == "" {
-		return completed, false
+// Station returns what StationXML says of the channel's station, by network and
+// code: name, coordinates and elevation. ok is false where that is nothing.
+func (m *Metadata) Station(c *Channel) (s Station, ok bool) {
+	if m == nil || c.Station.Network == "" || c.Station.Code == "" {
+		return Station{}, false
 	}
-	site, ok := m.inventory.Site(s.Network, s.Code, c.Start)
+	site, ok := m.inventory.Site(c.Station.Network, c.Station.Code, c.Start)
 	if !ok {
-		return completed, false
+		return Station{}, false
 	}
-	filled := &completed.Station
-	if s.Name == "" {
-		filled.Name = site.Name
-	}
-	if !s.Latitude.Known || !s.Longitude.Known {
-		filled.Latitude, filled.Longitude = Known(site.Latitude), Known(site.Longitude)
-	}
-	if !s.ElevationM.Known {
-		filled.ElevationM = Known(site.ElevationM)
-	}
-	if *filled == (Station{}) {
-		return completed, false
-	}
-	applyStation(s, filled)
-	return completed, true
+	return Station{
+		Network: c.Station.Network, Code: c.Station.Code, Name: site.Name,
+		Latitude: Known(site.Latitude), Longitude: Known(site.Longitude), ElevationM: Known(site.ElevationM),
+	}, true
 }
 
 // epoch returns the epoch of a channel that covers the times.

@@ -402,28 +402,23 @@ func TestReadMetadata(t *testing.T) {
 	}
 }
 
-func TestCompleteStation(t *testing.T) {
+func TestStation(t *testing.T) {
 	m := mseedHints(t).Metadata
 	all := Station{Network: "XX", Code: "TARN", Name: "Tarn Head", Latitude: Known(30.5), Longitude: Known(149.75), ElevationM: Known(212)}
-	place := Station{Network: "XX", Code: "TARN", Name: "Own name", Latitude: Known(1), Longitude: Known(2)}
-	completed := place
-	completed.ElevationM = Known(212)
 	for name, k := range map[string]struct {
-		start    time.Time
-		is, want Station
+		start time.Time
+		is    Station
+		want  Station
 	}{
-		"nothing stated":  {mseedStart, Station{Network: "XX", Code: "TARN"}, all},
+		"covered":         {mseedStart, Station{Network: "XX", Code: "TARN", Name: "Own name", Latitude: Known(1), Longitude: Known(2)}, all},
 		"no time":         {time.Time{}, Station{Network: "XX", Code: "TARN"}, all},
-		"place stated":    {mseedStart, place, completed},
-		"all stated":      {mseedStart, all, all},
-		"other network":   {mseedStart, Station{Network: "YY", Code: "TARN"}, Station{Network: "YY", Code: "TARN"}},
-		"no network":      {mseedStart, Station{Code: "TARN"}, Station{Code: "TARN"}},
-		"before it stood": {mseedStart.AddDate(-5, 0, 0), Station{Network: "XX", Code: "TARN"}, Station{Network: "XX", Code: "TARN"}},
+		"other network":   {mseedStart, Station{Network: "YY", Code: "TARN"}, Station{}},
+		"no network":      {mseedStart, Station{Code: "TARN"}, Station{}},
+		"before it stood": {mseedStart.AddDate(-5, 0, 0), Station{Network: "XX", Code: "TARN"}, Station{}},
 	} {
-		c := Channel{Station: k.is, Start: k.start}
-		filled, ok := m.CompleteStation(&c)
-		if c.Station != k.want || ok != (k.is != k.want) || ok && filled.Station == (Station{}) {
-			t.Errorf("%s: %+v, %v, want %+v", name, c.Station, ok, k.want)
+		got, ok := m.Station(&Channel{Station: k.is, Start: k.start})
+		if got != k.want || ok != (k.want != Station{}) {
+			t.Errorf("%s: %+v, %v, want %+v", name, got, ok, k.want)
 		}
 	}
 }

@@ -9,20 +9,27 @@ import (
 	"swaybook/ingest"
 )
 
-// describeHeld applies the catalogue to what the store holds of a file's
-// content: nothing is read again, but what the catalogue says of it counts. It
-// returns what can no longer be changed.
+// describeHeld applies metadata and catalogue to what the store holds of a file's
+// content: nothing is read again, but what they say of it counts. It returns what
+// can no longer be changed.
 func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result) (warnings []string, err error) {
-	if w.opts.Catalogue == nil {
+	if w.opts.Catalogue == nil && w.opts.Hints.Metadata.IsEmpty() {
 		return nil, nil
 	}
 	components, err := tx.ComponentsOf(ctx, w.run.generation, res.source.SHA256)
 	if err != nil {
 		return nil, err
 	}
-	hints := w.opts.Catalogue.Hints(res.rel, ingest.Hints{})
 	for _, held := range components {
 		c := channelOf(held)
+		key := db.RecordKey{ID: held.RecordID, EventID: held.Record.EventID, StationID: held.Record.StationID}
+		if err := w.settler.state(ctx, key, metadataAccounts(w.opts.Hints.Metadata, &c, held.Samples)); err != nil {
+			return nil, err
+		}
+		if w.opts.Catalogue == nil {
+			continue
+		}
+		hints := w.opts.Catalogue.Hints(res.rel, ingest.Hints{})
 		stated, matched := w.opts.Catalogue.Apply(res.rel, &c)
 		if matched {
 			if err := w.redescribe(ctx, tx, held, c.Orientation, stated); err != nil {

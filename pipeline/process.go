@@ -125,9 +125,7 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	res.outcome, res.refused = Stored, refused
 	for i := range channels {
 		accounts := []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: withoutSamples(channels[i])}}
-		if completed, ok := r.hints.Metadata.CompleteStation(&channels[i]); ok {
-			accounts = append(accounts, account{by: db.ByMetadata, source: "station metadata", channel: completed})
-		}
+		accounts = append(accounts, metadataAccounts(r.hints.Metadata, &channels[i], len(channels[i].Acceleration))...)
 		stated, matched := r.describe(file, res.stem, &channels[i])
 		s, err := r.solve(channels[i])
 		s.stated, s.matched, s.accounts = stated, matched, accounts
