@@ -9,9 +9,9 @@ import (
 // cosmos reads COSMOS strong-motion text files, version 1.20: sections of text
 // header, integer header, real header, comments and data, each of one channel
 // and one quantity, in the Fortran formats that the sections state. Sections of
-// acceleration are kept, whether raw counts with their calibration (V0),
-// uncorrected (V1c) or corrected (V2c); those of velocity and displacement are
-// passed over. Files of versions before 1.20 place their numbers elsewhere: of
+// acceleration are kept, whether raw counts or volts with their calibration (V0),
+// uncorrected (V1c) or corrected (V2c); those of velocity, displacement and all
+// else are passed over, with a warning that says which. Files of versions before 1.20 place their numbers elsewhere: of
 // them only text and data lines are used.
 //
 // Source: COSMOS Programs Board, Strong Motion Data Format, version 1.20 (2001),
@@ -23,7 +23,7 @@ type cosmos struct{}
 func (cosmos) Info() Info {
 	return Info{
 		Name: "cosmos", Title: "COSMOS strong-motion text, version 1.20", Channels: "one or more",
-		Unit: "as stated", NotRead: "V0 counts without a complete calibration",
+		Unit: "as stated", NotRead: "counts and volts without a complete calibration",
 	}
 }
 
@@ -128,7 +128,10 @@ func (r *cosmosReader) pass(d *cosmosData, quantity string) (int, error) {
 	r.skipped[quantity]++
 	next, err := d.layout.skip(r.text, d.line+1, d.count, quantity)
 	if err != nil {
-		return 0, err
+		var ok bool
+		if _, next, ok = blankSeparated(r.text, d.line+1, d.count, d.layout.decimals > 0); !ok {
+			return 0, err
+		}
 	}
 	next, _, err = r.end(next, d, quantity)
 	return next, err

@@ -3,6 +3,7 @@ package ingest
 import (
 	"errors"
 	"fmt"
+	"math"
 	"regexp"
 	"strings"
 )
@@ -79,6 +80,8 @@ func quantityFromWords(s string) string {
 	switch {
 	case strings.Contains(s, "spectr"):
 		return quantitySpectra
+	case strings.Contains(s, "rotation") || strings.Contains(s, "angular"):
+		return quantityOther
 	case strings.Contains(s, "accel"):
 		return quantityAcceleration
 	case strings.Contains(s, "veloc"):
@@ -90,8 +93,8 @@ func quantityFromWords(s string) string {
 }
 
 // cosmosUnitNames are the units of acceleration by their codes. Codes 2, 4, 7, 10,
-// 11 and 12 are confirmed by published field maps; volts and pairs with a time
-// cannot be read.
+// 11 and 12 are confirmed by published field maps; pairs with a time cannot be
+// read.
 var cosmosUnitNames = map[int]Unit{
 	2:  {"g", StandardGravity},
 	4:  {"cm/s2", 0.01},
@@ -102,11 +105,24 @@ var cosmosUnitNames = map[int]Unit{
 }
 
 // cosmosCounts is the unit code of raw counts, and countsUnit how this package
-// spells them.
+// spells them; voltsUnit and millivoltsUnit are how it spells the other outputs.
 const (
-	cosmosCounts = 50
-	countsUnit   = "counts"
+	cosmosCounts   = 50
+	countsUnit     = "counts"
+	voltsUnit      = "volts"
+	millivoltsUnit = "millivolts"
 )
+
+// cosmosOutputs are the units of what a recorder puts out, by their codes. They
+// have no size before the calibration is known. Codes 50 to 52 are confirmed by
+// published field maps.
+var cosmosOutputs = map[int]string{cosmosCounts: countsUnit, 51: voltsUnit, 52: millivoltsUnit}
+
+// outputWords are the spellings of those units in words.
+var outputWords = map[string]string{
+	"count": countsUnit, countsUnit: countsUnit, "v": voltsUnit, "volt": voltsUnit, voltsUnit: voltsUnit,
+	"mv": millivoltsUnit, "millivolt": millivoltsUnit, millivoltsUnit: millivoltsUnit,
+}
 
 // convert settles step and unit of a channel whose values have been read, and
 // turns these into m/s².
@@ -119,13 +135,13 @@ func (h *cosmosHeader) convert(c *Channel, d *cosmosData, hints Hints) error {
 	if err != nil {
 		return err
 	}
-	if unit.Name == countsUnit {
-		if unit.MPS2, err = h.calibration(d.line); err != nil {
+	if unit.MPS2 == 0 {
+		if unit.MPS2, err = h.calibration(unit.Name, d.line); err != nil {
 			return err
 		}
 		centre(c.Acceleration)
 		c.Processing = ProcessingMeanRemoved
-		// The stated peak is in counts from zero, not from the mean.
+		// The stated peak is from zero, not from the mean.
 		c.HeaderPeak = Number{}
 	}
 	c.Unit, c.UnitMPS2 = unit.Name, unit.MPS2
@@ -135,20 +151,24 @@ func (h *cosmosHeader) convert(c *Channel, d *cosmosData, hints Hints) error {
 }
 
 // unit returns the unit that the data line and integer 3 state. Text and codes
-// must mean the same size; a micro-g is known by its code only. Counts come back
-// with no size.
+// must mean the same size; a micro-g is known by its code only. What a recorder
+// puts out comes back with no size.
 func (h *cosmosHeader) unit(c *Channel, d *cosmosData, hints Hints) (Unit, error) {
 	coded, err := h.codedUnit(d)
 	if err != nil {
 		return Unit{}, err
 	}
 	named := strings.ToLower(d.unit)
+	output := outputWords[named]
+	if named == "" && coded.MPS2 == 0 {
+		output = coded.Name
+	}
 	switch {
-	case named == countsUnit || named == "count" || named == "" && coded.Name == countsUnit:
-		if coded.Name != "" && coded.Name != countsUnit {
-			return Unit{}, refuse(d.line, "unit", "the text says counts, the code says %s", coded.Name)
+	case output != "":
+		if coded.Name != "" && coded.Name != output {
+			return Unit{}, refuse(d.line, "unit", "the text says %s, the code says %s", output, coded.Name)
 		}
-		return Unit{Name: countsUnit}, unlessHinted(countsUnit, d, hints)
+		return Unit{Name: output}, unlessHinted(output, d, hints)
 	case coded.Name == microG && microGText[named]:
 		return coded, unlessHinted(microG, d, hints)
 	case named == "":
@@ -198,7 +218,7 @@ func (h *cosmosHeader) codedUnit(d *cosmosData) (Unit, error) {
 		switch {
 		case err != nil:
 			return Unit{}, refuse(d.line, "unit", "%s: %w", code.what, err)
-		case coded.Name != "" && coded.MPS2 != u.MPS2:
+		case coded.Name != "" && (coded.MPS2 != u.MPS2 || u.MPS2 == 0 && coded.Name != u.Name):
 			return Unit{}, refuse(d.line, "unit", "the data line's code says %s, integer 3 says %s", coded.Name, u.Name)
 		}
 		coded = u
@@ -206,24 +226,30 @@ func (h *cosmosHeader) codedUnit(d *cosmosData) (Unit, error) {
 	return coded, nil
 }
 
-// calibration returns the value of one count in m/s²,
+// calibration returns the value of one count, volt or millivolt in m/s²,
 //
-//	lsb · 10⁻⁶ / (sensitivity · gain) · g,
+//	size · 10⁻⁶ / (sensitivity · gain) · g,
 //
-// with the recorder's microvolts per count (real 22), the sensor's volts per g
-// (real 42) and the gain (real 47, 1 where not stated). Without the first two
-// the counts mean nothing.
-func (h *cosmosHeader) calibration(line int) (float64, error) {
-	lsb, sensitivity, gain := h.real(22), h.real(42), h.real(47).Or(Known(1))
+// with its size in microvolts, for a count that of real 22, the sensor's volts
+// per g (real 42) and the gain (real 47, 1 where not stated). Without the first
+// two the numbers mean nothing.
+func (h *cosmosHeader) calibration(output string, line int) (float64, error) {
+	size, sensitivity, gain := Known(1e6), h.real(42), h.real(47).Or(Known(1))
+	switch output {
+	case countsUnit:
+		size = h.real(22)
+	case millivoltsUnit:
+		size = Known(1e3)
+	}
 	for _, q := range []struct {
 		n    Number
 		what string
-	}{{lsb, "microvolts per count (real 22)"}, {sensitivity, "volts per g (real 42)"}, {gain, "gain (real 47)"}} {
+	}{{size, "microvolts per count (real 22)"}, {sensitivity, "volts per g (real 42)"}, {gain, "gain (real 47)"}} {
 		if !(q.n.Value > 0) {
-			return 0, refuse(line, "calibration", "raw counts without a positive %s cannot be scaled", q.what)
+			return 0, refuse(line, "calibration", "raw %s without a positive %s cannot be scaled", output, q.what)
 		}
 	}
-	return lsb.Value * 1e-6 / (sensitivity.Value * gain.Value) * StandardGravity, nil
+	return size.Value * 1e-6 / (sensitivity.Value * gain.Value) * StandardGravity, nil
 }
 
 // centre takes the mean of x from its values. Counts are integers, so that
@@ -239,13 +265,16 @@ func centre(x []float64) {
 	}
 }
 
-// unitOfCode returns the unit of acceleration, or the counts, of a code.
+// unitOfCode returns the unit of acceleration, or of a recorder's output, of a
+// code.
 func unitOfCode(code float64) (Unit, error) {
-	if code == cosmosCounts {
-		return Unit{Name: countsUnit}, nil
-	}
-	if u, ok := cosmosUnitNames[int(code)]; ok && code == float64(int(code)) {
-		return u, nil
+	if code == math.Trunc(code) {
+		if output, ok := cosmosOutputs[int(code)]; ok {
+			return Unit{Name: output}, nil
+		}
+		if u, ok := cosmosUnitNames[int(code)]; ok {
+			return u, nil
+		}
 	}
 	return Unit{}, fmt.Errorf("unit code %g is none of acceleration", code)
 }

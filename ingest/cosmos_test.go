@@ -127,14 +127,20 @@ const (
 	lineData  = 49
 )
 
+// blankParted returns a section whose values stand in no columns.
+func blankParted(lines []string) []string {
+	out := slices.Clone(lines)
+	for i := lineData; i < len(out)-1; i++ {
+		out[i] = strings.Join(strings.Fields(out[i]), " ")
+	}
+	return out
+}
+
 func TestCosmosVariants(t *testing.T) {
 	base := cosmosBase.lines()
 	raw := cosmosRaw().lines()
 	code := func(n string) []string { return edit(t, edit(t, base, 9, "360 deg", ""), lineInts+5, "     360", n) }
-	free := slices.Clone(base)
-	for i := lineData; i < len(free)-1; i++ {
-		free[i] = strings.Join(strings.Fields(free[i]), " ")
-	}
+	free := blankParted(base)
 	cases := []struct {
 		name    string
 		lines   []string
@@ -194,6 +200,18 @@ func TestCosmosVariants(t *testing.T) {
 		{"no unit text", edit(t, base, lineData, "units=cm/sec2 (04),", ""), func(c *Channel) bool { return c.Unit == "cm/s2" }, ""},
 		{"gain of 10", edit(t, raw, lineReals+9, "       1.000000", "      10.000000"),
 			func(c *Channel) bool { return math.Abs(c.UnitMPS2-2e-7*9.80665) < 1e-20 }, ""},
+		{"volts at a gain of 100000", edit(t, edit(t, edit(t, raw, lineInts, "      50     120", "      51     120"), lineData, "counts (50)", "volts (51)"), lineReals+9, "       1.000000", "  100000.000000"),
+			func(c *Channel) bool { return c.Unit == "volts" && math.Abs(c.UnitMPS2-9.80665/125000) < 1e-18 }, ""},
+		{"millivolts by their code", edit(t, edit(t, edit(t, raw, lineInts, "      50     120", "      52     120"), lineData, "units=counts (50),", ""), lineReals+9, "       1.000000", "     100.000000"),
+			func(c *Channel) bool { return c.Unit == "millivolts" && math.Abs(c.UnitMPS2-9.80665/125000) < 1e-18 }, ""},
+		{"counts of an uncorrected file", edit(t, edit(t, raw, 1, "Raw acceleration counts", "Uncorrected acceleration"), lineInts, "       0       1      50", "       1       1      50"),
+			func(c *Channel) bool {
+				return c.Unit == "counts" && c.Processing == ProcessingMeanRemoved && math.Abs(c.UnitMPS2-2e-6*9.80665) < 1e-20
+			}, ""},
+		{"sections of other quantities", slices.Concat(base, cosmosBase.as("Rotational acceleration", "angular acceleration", "rad/s/s", 9, 60).lines()),
+			func(c *Channel) bool { return len(c.Acceleration) == 150 }, "sections of another quantity in the file were passed over"},
+		{"velocity parted by blanks", slices.Concat(base, blankParted(cosmosBase.as("Corrected velocity", "velocity", "cm/sec", 2, 5).lines())),
+			func(c *Channel) bool { return len(c.Acceleration) == 150 }, "sections of velocity in the file were passed over"},
 		{"gain not stated", edit(t, raw, lineReals+9, "       1.000000", "    -999.000000"),
 			func(c *Channel) bool { return math.Abs(c.UnitMPS2-2e-6*9.80665) < 1e-20 }, ""},
 		{"station name in Latin-1", edit(t, base, 5, "Weir", "W\xe9ir"), func(c *Channel) bool { return c.Station.Name == "Thistle Bend - Wéir Road School" }, ""},
@@ -301,6 +319,10 @@ func TestCosmosRefusals(t *testing.T) {
 			"case:49: calibration: raw counts without a positive microvolts per count (real 22) cannot be scaled"},
 		{"truncated velocity", append(slices.Clone(base), cosmosBase.as("Corrected velocity", "velocity", "cm/sec", 2, 5).lines()[:55]...),
 			"case:124: velocity: truncated: announced 150 values, found 48"},
+		{"volts without a sensitivity", edit(t, edit(t, edit(t, raw, lineInts, "      50     120", "      51     120"), lineData, "counts (50)", "volts (51)"), lineReals+8, "       1.250000", "    -999.000000"),
+			"case:49: calibration: raw volts without a positive volts per g (real 42) cannot be scaled"},
+		{"counts and volts", edit(t, raw, lineData, "counts (50)", "counts (51)"), "case:49: unit: the data line's code says volts, integer 3 says counts"},
+		{"text says volts, code counts", edit(t, raw, lineData, "counts (50)", "V (50)"), "case:49: unit: the text says volts, the code says counts"},
 		{"counts without volts", edit(t, raw, lineReals+8, "       1.250000", "    -999.000000"), "case:49: calibration: raw counts without a positive volts per g (real 42) cannot be scaled"},
 		{"counts without microvolts", edit(t, raw, lineReals+4, "       2.500000", "    -999.000000"), "case:49: calibration: raw counts without a positive microvolts per count (real 22) cannot be scaled"},
 		{"text says counts, code cm/s2", edit(t, base, lineData, "cm/sec2", "counts"), "case:49: unit: the text says counts, the code says cm/s2"},

@@ -91,7 +91,7 @@ func (h *esmHeader) motion(t *Text) error {
 		return &NotMotionError{Reason: "spectra, not a time series"}
 	case columns > 1 && quantity == quantityAcceleration:
 		return refuse(h.data, "samples", "line holds %d values, expected 1", columns)
-	case quantity == quantityVelocity || quantity == quantityDisplacement:
+	case quantity == quantityVelocity || quantity == quantityDisplacement || quantity == quantityOther:
 		return &NotMotionError{Reason: quantity + " only, no acceleration"}
 	case peak != "" && peak != quantity && quantity != "":
 		return refuse(kind.line, esmType, "the file holds %s, its peak is one of %s", quantity, peak)

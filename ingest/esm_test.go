@@ -176,7 +176,7 @@ func TestESMRefusals(t *testing.T) {
 		{"other unit", lines, units, "case:33: unit: the file says cm/s2, --unit says g"},
 		{"key twice", edit(t, lines, 63, "USER4:", "NDATA: 241"), Hints{}, `case:63: NDATA: line 30 says "240", line 63 "241"`},
 		{"header peak", base.with("PGA_CM/S^2", "-200").lines(), Hints{}, "case:65: peak: samples reach 1.5225 m/s², the header says 2 m/s²"},
-		{"type unknown", base.with("DATA_TYPE", "ROTATION").lines(), Hints{}, `case:50: DATA_TYPE: unknown type of data "ROTATION"`},
+		{"type unknown", base.with("DATA_TYPE", "STRAIN").lines(), Hints{}, `case:50: DATA_TYPE: unknown type of data "STRAIN"`},
 		{"type against the peak", base.renamed("PGA_CM/S^2", "PGV_CM/S").lines(), Hints{}, "case:50: DATA_TYPE: the file holds acceleration, its peak is one of velocity"},
 		{"two values in the first line", edit(t, lines, 65, "0.000000", "0.000000 1.0"), Hints{}, "case:65: samples: line holds 2 values, expected 1"},
 		{"two values in a line", edit(t, lines, 100, ".", ".0 0."), Hints{}, "case:100: samples: line holds 2 values, expected 1"},
@@ -219,6 +219,7 @@ func TestESMNotMotion(t *testing.T) {
 		{"velocity", "velocity only, no acceleration", read(strings.Replace(esmEastFile, "ACC", "VEL", 1))},
 		{"spectrum", "spectra, not a time series", read(strings.Replace(esmEastFile, "ACC", "SA", 1))},
 		{"spectrum by the name of its type", "spectra, not a time series", base.with("DATA_TYPE", "PSV").lines()},
+		{"rotation", "another quantity only, no acceleration", base.with("DATA_TYPE", "ROTATION RATE").lines()},
 		{"spectrum by its columns", "spectra, not a time series", append(pairs, "  0.0100   1.5", "  0.0200   1.6")},
 		{"displacement by its peak", "displacement only, no acceleration", base.with("DATA_TYPE", "", "UNITS", "cm").renamed("PGA_CM/S^2", "PGD_CM").lines()},
 	}
