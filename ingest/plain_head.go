@@ -266,6 +266,8 @@ func describeNumber(c *Channel, s comment) bool {
 		limits
 	}{
 		"magnitude": {&c.Event.Magnitude, anything}, "distance_km": {&c.DistanceKM, anything},
+		"epicentral_km": {&c.Distances.EpicentralKM, anything}, "hypocentral_km": {&c.Distances.HypocentralKM, anything},
+		"rupture_km": {&c.Distances.RuptureKM, anything}, "jb_km": {&c.Distances.JoynerBooreKM, anything},
 		"depth_km": {&c.Event.DepthKM, anything}, "vs30": {&c.Station.Vs30, anything}, "vs30_m_s": {&c.Station.Vs30, anything},
 		"event_latitude": {&c.Event.Latitude, anything}, "event_longitude": {&c.Event.Longitude, anything},
 		"station_latitude": {&c.Station.Latitude, anything}, "latitude": {&c.Station.Latitude, anything},

@@ -291,6 +291,7 @@ func TestPlainComments(t *testing.T) {
 		"# event latitude: 30.1", "# event longitude: 150.2", "# depth_km: 25", "# distance_km = 61.5",
 		"# station: CDH9", "# station name: Cedar Hill", "# network: ZZ", "# latitude: 30.5", "# longitude: high", "# vs30: 360",
 		"# siting: free field", "# start_time: 2041-03-03T23:12:16Z", "# low_cut_hz: 0.1", "# high_cut_hz: 40", "# unit: gal", "# dt: 0.01",
+		"# epicentral_km: 60", "# hypocentral_km: 65", "# rupture_km: 52.5", "# jb_km: 45.25",
 	}, column(20, "%.4f"))
 	_, channels, err := parseLines(lines, Hints{})
 	if err != nil {
@@ -305,6 +306,9 @@ func TestPlainComments(t *testing.T) {
 	station := Station{Network: "ZZ", Code: "CDH9", Name: "Cedar Hill", Vs30: Known(360)}
 	if c.Station != station {
 		t.Errorf("station %+v, want %+v", c.Station, station)
+	}
+	if want := (Distances{EpicentralKM: Known(60), HypocentralKM: Known(65), RuptureKM: Known(52.5), JoynerBooreKM: Known(45.25)}); c.Distances != want {
+		t.Errorf("distances %+v, want %+v", c.Distances, want)
 	}
 	if c.DistanceKM != Known(61.5) || c.Siting != SitingFreeField || c.LowCutHz != Known(0.1) || c.HighCutHz != Known(40) ||
 		!c.Start.Equal(time.Date(2041, 3, 3, 23, 12, 16, 0, time.UTC)) {
