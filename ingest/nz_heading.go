@@ -151,9 +151,10 @@ func (h *nzHeading) describeSite(c *Channel) error {
 	if m != nil && strings.EqualFold(m[8], "W") && east <= 180 {
 		longitude = -math.Abs(east)
 	}
-	if s.Latitude, s.Longitude = position(Known(latitude), Known(longitude)); !s.Latitude.Known {
+	if !latitudeLimits.hold(latitude) || !longitudeLimits.hold(longitude) {
 		return refuse(at, "site", "no place is at %g, %g", latitude, longitude)
 	}
+	s.Latitude, s.Longitude = Known(latitude), Known(longitude)
 	if m != nil {
 		h.comparePosition(c, m)
 	}

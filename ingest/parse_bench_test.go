@@ -23,7 +23,6 @@ func BenchmarkParse(b *testing.B) {
 		"esm":           newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
 		"jma-csv":       jmaLong(n),
 		"plain":         timed(even(n, 0.005), "%.3f", " "),
-		"smc":           smc.lines(),
 		"california-v1": v1.lines(), "smc": smc.lines(), "new-zealand": nzFile([]nzSample{nz, nz, nz}),
 	} {
 		hints := Hints{}

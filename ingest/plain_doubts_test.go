@@ -171,7 +171,7 @@ func TestPlainWarnings(t *testing.T) {
 		want  []string
 	}{
 		{head([]string{"# PGA: high"}, values), Hints{Unit: "gal", StepS: 0.01}, []string{`line 1: peak "high" not understood`}},
-		{head([]string{"# PGA = 0.31"}, values), Hints{Unit: "gal", StepS: 0.01}, []string{"peak of the samples and of the header differ by more than 1 %"}},
+		{head([]string{"# PGA = 0.31"}, values), Hints{Unit: "gal", StepS: 0.01}, []string{"peak of the samples and of the header differ by more than 2 %"}},
 		{head([]string{"# low_cut_hz: 40", "# high_cut_hz: 0.1"}, values), Hints{Unit: "gal", StepS: 0.01}, []string{"filter corners 40 and 0.1 Hz contradict each other, not used"}},
 		{long[:len(long)-1], Hints{Unit: "gal", StepS: 0.1}, []string{"2.22 hours long: a continuous recording?"}},
 		{edit(t, values, 2, values[1], "1.0E\u221205"), Hints{Unit: "gal", StepS: 0.01}, []string{"line 2: U+2212 read as a minus sign"}},

@@ -129,7 +129,7 @@ func TestV1Variants(t *testing.T) {
 			},
 			"the heading has no station number in its place: event, station and direction are not known"},
 		{"peak of few digits", edit(t, base, 12, ".312", ".31 "), Hints{}, func(c *Channel) bool { return !c.HeaderPeak.Known }, ""},
-		{"peak 2 % off", edit(t, base, 12, ".312", ".318"), Hints{}, all, "peak of the samples and of the header differ by more than 1 %"},
+		{"peak 2.5 % off", edit(t, base, 12, ".312", ".320"), Hints{}, all, "peak of the samples and of the header differ by more than 2 %"},
 		{"no end line", base[:len(base)-1], Hints{}, all, "the channel has no end line"},
 	}
 	for _, tc := range cases {
