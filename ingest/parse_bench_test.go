@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"math"
 	"strings"
 	"testing"
 )
@@ -39,5 +40,28 @@ func BenchmarkParse(b *testing.B) {
 				}
 			}
 		})
+	}
+}
+
+// BenchmarkParseMiniSEED reads a file of three channels in Steim-2; bytes are
+// those of the file.
+func BenchmarkParseMiniSEED(b *testing.B) {
+	var data []byte
+	for _, channel := range []string{"HNE", "HNN", "HNZ"} {
+		r := mseedRecord(channel, 100, 310_000)
+		x := ring(20000, 310_000, 1.99, 0.999)
+		for i := range x {
+			x[i] = math.Round(x[i])
+		}
+		r.Samples, r.Length = x, 4096
+		data = append(data, r.Series(2)...)
+	}
+	hints := mseedHints(b)
+	b.SetBytes(int64(len(data)))
+	b.ReportAllocs()
+	for b.Loop() {
+		if _, channels, err := Parse("f", data, hints); err != nil || len(channels) != 3 {
+			b.Fatal(len(channels), err)
+		}
 	}
 }
