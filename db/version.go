@@ -12,7 +12,11 @@ type Version struct {
 	RecordCode            string
 	Component             // of which Warnings and HeaderPeak are not read
 	Digest                string
-	DuplicateOf           int64 // the component that statistics take, 0 where that is this
+	// The event, by the one that stands for it, and the station's code; 0 and "" where
+	// unknown.
+	EventID     int64
+	StationCode string
+	DuplicateOf int64 // the component that statistics take, 0 where that is this
 }
 
 // Versions returns the components of the record and of those that may hold the
@@ -21,8 +25,8 @@ type Version struct {
 func (t *Tx) Versions(ctx context.Context, recordID int64) ([]Version, error) {
 	rows, err := t.tx.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
 			coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
-			f.path, f.sha256, f.format, x.sha256, coalesce(c.duplicate_of, 0)
-		FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
+			f.path, f.sha256, f.format, x.sha256, coalesce(c.duplicate_of, 0), coalesce(e.primary_id, e.id, 0), coalesce(s.code, '')
+		FROM component c JOIN record r ON r.id = c.record_id LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
 		WHERE c.record_id IN (
 			SELECT ?1
 			UNION SELECT other.id FROM record this JOIN event e ON e.id = this.event_id JOIN station s ON s.id = this.station_id
@@ -42,7 +46,7 @@ func (t *Tx) Versions(ctx context.Context, recordID int64) ([]Version, error) {
 	found, err := collect(rows, func(v *row) []any {
 		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
 			&v.start, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz,
-			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.DuplicateOf}
+			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.DuplicateOf, &v.EventID, &v.StationCode}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)

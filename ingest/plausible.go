@@ -48,6 +48,9 @@ func (c *Channel) believe(name string, n *Number, unit string, l limits) bool {
 }
 
 func (c *Channel) believePlace(name string, latitude, longitude *Number) {
+	if longitude.Known && longitude.Value > 180 && longitude.Value <= 360 {
+		longitude.Value -= 360 // counted all the way round
+	}
 	north := c.believe(name+" latitude", latitude, "", latitudeLimits)
 	east := c.believe(name+" longitude", longitude, "", longitudeLimits)
 	if !north || !east {

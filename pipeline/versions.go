@@ -50,11 +50,11 @@ func (s *settler) versions(ctx context.Context, recordID int64) error {
 // none.
 func (s *settler) sameMotion(ctx context.Context, v *db.Version, taken []*db.Version) (int64, error) {
 	for _, other := range taken {
-		if v.Digest == other.Digest {
-			return other.ComponentID, nil
-		}
 		if !canBeOne(v, other) {
 			continue
+		}
+		if v.Digest == other.Digest {
+			return other.ComponentID, nil
 		}
 		same, err := s.alike(ctx, v, other)
 		if err != nil || same {
@@ -64,20 +64,23 @@ func (s *settler) sameMotion(ctx context.Context, v *db.Version, taken []*db.Ver
 	return 0, nil
 }
 
-// canBeOne reports whether two components measure one direction at one time, as
-// far as they say.
+// canBeOne reports whether two components measure one direction at one time and
+// place, as far as they say.
 func canBeOne(a, b *db.Version) bool {
-	if a.Axis != b.Axis || !a.Start.IsZero() && !b.Start.IsZero() && (a.End().Before(b.Start) || b.End().Before(a.Start)) {
-		return false
-	}
 	switch {
+	case a.EventID != 0 && b.EventID != 0 && a.EventID != b.EventID, a.StationCode != "" && b.StationCode != "" && a.StationCode != b.StationCode:
+		return false
+	case a.Axis != b.Axis:
+		return a.Digest == b.Digest && (a.Axis == axes[ingest.AxisUnknown] || b.Axis == axes[ingest.AxisUnknown])
+	case !a.Start.IsZero() && !b.Start.IsZero() && (a.End().Before(b.Start) || b.End().Before(a.Start)):
+		return false
 	case a.Axis == axes[ingest.AxisVertical]:
 		return true
 	case a.AzimuthDeg != nil && b.AzimuthDeg != nil:
 		// One may point the other way.
 		return math.Abs(math.Remainder(*a.AzimuthDeg-*b.AzimuthDeg, 180)) <= parallelDeg
 	}
-	return strings.EqualFold(a.Label, b.Label)
+	return strings.EqualFold(a.Label, b.Label) || a.Digest == b.Digest
 }
 
 // alike compares the samples of two components, once for all time.
