@@ -121,7 +121,7 @@ func differences(d *[8]int32, code, w uint32, e Encoding) int {
 	case 2<<2 | 3:
 		d[0], d[1], d[2] = v<<2>>22, v<<12>>22, v<<22>>22
 		return 3
-	case 3<<2 | 0:
+	case 3 << 2:
 		d[0], d[1], d[2], d[3], d[4] = v<<2>>26, v<<8>>26, v<<14>>26, v<<20>>26, v<<26>>26
 		return 5
 	case 3<<2 | 1:
