@@ -196,6 +196,17 @@ func (t *Tx) changed(ctx context.Context, table string, id int64, to []assignmen
 	return n > 0, err
 }
 
+// Relations counts the event codes for which another stands, and the components
+// whose motion statistics take from another.
+func (t *Tx) Relations(ctx context.Context) (joined, duplicates int, err error) {
+	err = t.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM event WHERE primary_id IS NOT NULL),
+		(SELECT count(*) FROM component WHERE duplicate_of IS NOT NULL)`).Scan(&joined, &duplicates)
+	if err != nil {
+		return 0, 0, fmt.Errorf("count relations: %w", err)
+	}
+	return joined, duplicates, nil
+}
+
 // RecordPlace is where a record's earthquake and its station are. Nil is unknown.
 type RecordPlace struct {
 	RecordID                     int64

@@ -35,8 +35,12 @@ type Summary struct {
 	Damaged    int `json:"damaged"`     // records that are damaged in the store
 	// Unrotated counts the pairs left to a later run: all where that was asked for,
 	// those not reached by a run that was stopped while it rotated.
-	Unrotated int     `json:"left_to_rotate"`
-	Seconds   float64 `json:"seconds"`
+	Unrotated int `json:"left_to_rotate"`
+	// Of the whole store: event codes that are associated with another one, and
+	// components that hold a motion of which statistics take another version.
+	EventsJoined int     `json:"events_joined"`
+	Duplicates   int     `json:"duplicates"`
+	Seconds      float64 `json:"seconds"`
 }
 
 func (s *Summary) add(f FileReport) {

@@ -203,7 +203,10 @@ func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 		outcome = "failed"
 	}
 	ctx = context.WithoutCancel(ctx)
-	errFinish := w.store.Update(ctx, func(tx *db.Tx) error {
+	errFinish := w.store.Update(ctx, func(tx *db.Tx) (err error) {
+		if w.summary.EventsJoined, w.summary.Duplicates, err = tx.Relations(ctx); err != nil {
+			return err
+		}
 		return tx.FinishRun(ctx, w.run.id, outcome, w.summary, w.opts.Clock())
 	})
 	return w.summary, errors.Join(err, errFinish)

@@ -329,6 +329,12 @@ func (r ingestReport) printRotation(p *printer) {
 	if r.NotRotated > 0 {
 		p.printf("  records whose horizontals do not pair   %7d\n", r.NotRotated)
 	}
+	if r.EventsJoined > 0 {
+		p.printf("  event codes that mean another's event   %7d  see query records --conflicts\n", r.EventsJoined)
+	}
+	if r.Duplicates > 0 {
+		p.printf("  components held in a better version too %7d  left out of statistics\n", r.Duplicates)
+	}
 	if r.Damaged > 0 {
 		p.printf("  records damaged in the store            %7d\n", r.Damaged)
 	}
