@@ -8,72 +8,84 @@ import (
 	"swaybook/pipeline/internal/kernel"
 )
 
-// candidate is a direction whose D must be known.
+// candidate is a direction whose D must be known, or known not to be the greatest:
+// best tells that it can be nothing else.
 type candidate struct {
 	direction int
 	d         float64
+	best      bool
 }
 
 // directions is the work space of the search for the D of candidates, a lane each.
 type directions struct {
 	candidates         []candidate
 	sorted             []float64 // their D
+	greatest           float64   // of them
 	high, chosen, best kernel.Above
 	points             []kernel.Point
 	pieceOf            []int // the piece that ends at each point, −1 for none
 	lines              []kernel.Line
-	flags              []uint32
+	flags, seen        []uint32
 	rows               []kernel.Row
 	rays               *kernel.Rays
 	screen             *kernel.StepScreen
+	tops               *kernel.Screen
+	none               []kernel.Line // zeros
 }
 
-// chunk is how many points are projected at once.
-const chunk = 64
+// chunk is how many steps between points are projected at once.
+const chunk = 256
 
 func newDirections() directions {
 	return directions{
-		rows: make([]kernel.Row, chunk+1), flags: make([]uint32, chunk),
-		rays: new(kernel.Rays), screen: new(kernel.StepScreen),
+		rows: make([]kernel.Row, chunk+1), flags: make([]uint32, chunk+1), none: make([]kernel.Line, chunk+1),
+		rays: new(kernel.Rays), screen: new(kernel.StepScreen), tops: new(kernel.Screen),
 	}
 }
 
 // finish returns RotD50 and RotD100 of a lane, in units of the motion.
-func (r *rotation) finish(lane *rotatedLane, end pairEnd) (rotd50, rotd100 float64) {
+func (r *rotation) finish(lane *rotatedLane) (rotd50, rotd100 float64) {
 	s := &r.directions
-	if lane.wide < len(lane.pieces) {
-		r.points = lane.points(r.points[:0])
-		lane.widen(r.points)
-	}
-	above := s.choose(lane, end)
+	above := s.choose(lane)
 	s.trail(lane)
+	s.greatest = kernel.Greatest(&lane.reach)
 	for from := 0; from < len(s.candidates); from += lanes {
-		r.search(lane, s.candidates[from:min(from+lanes, len(s.candidates))])
+		r.search(lane, s.candidates[from:min(from+lanes, len(s.candidates))], above)
 	}
+	for i := range s.candidates {
+		c := &s.candidates[i]
+		u, v := lane.end.toward(c.direction)
+		c.d = lane.ringing.peak(c.d, u, v)
+	}
+	s.sort()
+	lower, upper := s.middle(above)
+	return float64(0.5 * (lower + upper)), s.sorted[len(s.sorted)-1]
+}
+
+// sort sets sorted to the D of the candidates, as far as they are known.
+func (s *directions) sort() {
 	s.sorted = s.sorted[:0]
 	for _, c := range s.candidates {
-		u, v := end.toward(c.direction)
-		s.sorted = append(s.sorted, lane.ringing.peak(c.d, u, v))
+		s.sorted = append(s.sorted, c.d)
 	}
 	slices.Sort(s.sorted)
-	n := len(s.sorted) + above // the middle two follow half − 1 that are greater
-	return float64(0.5 * (s.sorted[n-half] + s.sorted[n-half-1])), s.sorted[len(s.sorted)-1]
+}
+
+// middle returns the middle two of all D, the D of so many others being above
+// them: they follow half − 1 that are greater.
+func (s *directions) middle(above int) (lower, upper float64) {
+	n := len(s.sorted) + above
+	return s.sorted[n-half-1], s.sorted[n-half]
 }
 
 // choose sets the candidates: the directions whose D, between L and the bound
 // that follows from it, can be one of the middle two or the greatest. It returns
 // the number of the others that are above the middle.
-func (s *directions) choose(lane *rotatedLane, end pairEnd) (above int) {
-	rings := end.length() > lane.floor
-	if rings && lane.one.damping == 0 {
-		lane.ring(end)
-		rings = false
-	}
-	ground := 0.0
-	for i := range lane.pieces {
-		ground = max(ground, lane.pieces[i].ground)
-	}
-	top := lane.raise(12)
+func (s *directions) choose(lane *rotatedLane) (above int) {
+	end := &lane.end
+	rings := lane.one.damping > 0 && end.length() > lane.floor
+	ground := lane.bend()
+	top := lane.raise(8)
 	most := lane.most(top)
 	if rings {
 		most = max(most, end.length())
@@ -84,32 +96,36 @@ func (s *directions) choose(lane *rotatedLane, end pairEnd) (above int) {
 	lane.polygon.reach.Above(lane.under(lane.floor, ground), chosen)
 	lane.polygon.reach.Above(lane.under(top, ground), best)
 	for w := range chosen {
-		chosen[w] = chosen[w]&^high[w] | best[w]
+		chosen[w] &^= high[w]
 	}
 	if rings {
-		s.addRinging(lane, end, top, limit)
+		s.addRinging(lane, top, limit)
 	}
 	return s.list(lane)
 }
 
 // addRinging adds the directions in which the motion after the last sample can be
 // what matters.
-func (s *directions) addRinging(lane *rotatedLane, end pairEnd, top, limit float64) {
+func (s *directions) addRinging(lane *rotatedLane, top, limit float64) {
 	for i := range Directions {
-		if upper := end.reach(i); upper >= top || upper > lane.floor && lane.polygon.reach[i] <= limit {
+		if upper := lane.end.reach(i); upper >= top || upper > lane.floor && lane.polygon.reach[i] <= limit {
 			s.chosen[i/64] |= 1 << (i % 64)
 		}
 	}
 }
 
-// list makes candidates of those chosen and counts the others that are high.
+// list makes candidates of those chosen and of the best, and counts the others
+// that are high.
 func (s *directions) list(lane *rotatedLane) (above int) {
 	s.candidates = s.candidates[:0]
-	for w, set := range s.chosen {
+	for w := range s.chosen {
+		set := s.chosen[w] | s.best[w]
 		above += bits.OnesCount64(s.high[w] &^ set)
 		for ; set != 0; set &= set - 1 {
-			i := 64*w + bits.TrailingZeros64(set)
-			s.candidates = append(s.candidates, candidate{i, lane.reach[i]})
+			bit := bits.TrailingZeros64(set)
+			s.candidates = append(s.candidates, candidate{
+				direction: 64*w + bit, d: lane.reach[64*w+bit], best: s.chosen[w]>>bit&1 == 0,
+			})
 		}
 	}
 	return above
@@ -123,9 +139,9 @@ func (lane *rotatedLane) under(bound, ground float64) float64 {
 }
 
 // ring raises L to the greatest |u| after the last sample, without damping.
-func (lane *rotatedLane) ring(end pairEnd) {
+func (lane *rotatedLane) ring() {
 	for i := range lane.polygon.reach {
-		lane.polygon.reach[i] = max(lane.polygon.reach[i], end.reach(min(i, Directions-1))*(1-0x1p-50))
+		lane.polygon.reach[i] = max(lane.polygon.reach[i], lane.end.reach(min(i, Directions-1))*(1-0x1p-50))
 	}
 }
 
@@ -167,34 +183,101 @@ func (s *directions) trail(lane *rotatedLane) {
 		if i == 0 || !p.follows(&lane.pieces[i-1]) {
 			add(p.x, p.y, -1, 0)
 		}
-		add(p.xEnd, p.yEnd, i, p.ground)
+		add(p.xEnd, p.yEnd, i, p.bend)
 	}
 }
 
 // search raises the D of up to as many candidates as there are lanes to the
-// greatest |u| of the pieces.
-func (r *rotation) search(lane *rotatedLane, candidates []candidate) {
+// greatest |u| of the pieces, as far as that matters: up to the lower of the middle
+// values of what is known of all, and for those that can only be the best up to the
+// greatest.
+func (r *rotation) search(lane *rotatedLane, candidates []candidate, above int) {
 	s := &r.directions
-	want := ^uint32(0) >> (lanes - len(candidates))
 	s.aim(lane, candidates)
+	s.seen = resize(s.seen, len(s.points))
+	clear(s.seen)
 	for from := 0; from+1 < len(s.points); from += chunk {
-		n := min(chunk, len(s.points)-1-from)
-		kernel.Project(s.rows[:n+1], s.rays, s.points[from:from+n+1], want)
-		for l := range candidates {
-			s.screen.Best[l] = candidates[l].d
+		s.project(from, len(candidates))
+		r.searchTops(lane, candidates, from)
+	}
+	s.sort()
+	lower, _ := s.middle(above)
+	for l := range candidates {
+		s.screen.Best[l] = max(candidates[l].d, lower)
+		if candidates[l].best {
+			s.screen.Best[l] = s.greatest
 		}
-		kernel.ScreenSteps(s.screen, s.rows[:n+1], s.lines[from+1:from+n+1], s.flags[:n], want)
+	}
+	for from := 0; from+1 < len(s.points); from += chunk {
+		if len(s.points) > chunk+1 { // else they still are
+			s.project(from, len(candidates))
+		}
+		n := len(s.rows) - 1
+		kernel.ScreenSteps(s.screen, s.rows, s.lines[from+1:from+1+n], s.flags[:n], ^uint32(0)>>(lanes-len(candidates)))
 		for k, flags := range s.flags[:n] {
-			i := s.pieceOf[from+k+1]
-			if i < 0 {
-				continue
-			}
-			for ; flags != 0; flags &= flags - 1 {
-				l := bits.TrailingZeros32(flags)
-				c := &candidates[l]
-				c.d = r.follow(c.d, lane, &lane.pieces[i], s.rows[k][l], s.rows[k+1][l], s.rays.Cos[l], s.rays.Sin[l])
+			for flags &^= s.seen[from+1+k]; flags != 0; flags &= flags - 1 {
+				r.look(lane, candidates, from, k+1, bits.TrailingZeros32(flags))
 			}
 		}
+	}
+}
+
+// project sets rows to the points from one on, up to a chunk of steps between them,
+// in the directions of so many candidates.
+func (s *directions) project(from, candidates int) {
+	n := min(chunk+1, len(s.points)-from)
+	s.rows = s.rows[:n]
+	kernel.Project(s.rows, s.rays, s.points[from:from+n], ^uint32(0)>>(lanes-candidates))
+}
+
+// searchTops looks into the piece beside the greatest point of each candidate,
+// where that is what L is, on the side where the next point is greater: it usually
+// settles the others. Of those that can only be the best it does so for the first.
+func (r *rotation) searchTops(lane *rotatedLane, candidates []candidate, from int) {
+	s := &r.directions
+	want, lead := uint32(0), -1
+	for l := range candidates {
+		c := &candidates[l]
+		s.tops.Limit[l] = math.Nextafter(lane.reach[c.direction], -1)
+		if !c.best {
+			want |= 1 << l
+		} else if lead < 0 || c.d > candidates[lead].d {
+			lead = l
+		}
+	}
+	if lead >= 0 {
+		want |= 1 << lead
+	}
+	n := len(s.rows)
+	kernel.ScreenRows(s.tops, s.rows, s.none[:n], s.flags[:n])
+	for k, flags := range s.flags[:n] {
+		for flags &= want; flags != 0; flags &= flags - 1 {
+			l := bits.TrailingZeros32(flags)
+			if k > 0 && (k+1 == n || math.Abs(s.rows[k-1][l]) > math.Abs(s.rows[k+1][l])) {
+				r.look(lane, candidates, from, k, l)
+			} else if k+1 < n {
+				r.look(lane, candidates, from, k+1, l)
+			}
+		}
+	}
+}
+
+// look raises the D of a candidate to the greatest |u| of the piece that ends at
+// row k, if that matters.
+func (r *rotation) look(lane *rotatedLane, candidates []candidate, from, k, l int) {
+	s := &r.directions
+	s.seen[from+k] |= 1 << l
+	i := s.pieceOf[from+k]
+	if i < 0 {
+		return
+	}
+	c := &candidates[l]
+	best := max(c.d, s.screen.Best[l])
+	if c.best {
+		best = max(best, s.greatest)
+	}
+	if d := r.follow(best, lane, &lane.pieces[i], s.rows[k-1][l], s.rows[k][l], s.rays.Cos[l], s.rays.Sin[l]); d > best {
+		c.d, s.greatest = d, max(s.greatest, d)
 	}
 }
 
@@ -203,17 +286,20 @@ func (s *directions) aim(lane *rotatedLane, candidates []candidate) {
 	n := float64(lane.every)
 	phase := float64(n * lane.one.phase)
 	force, curve, slope := curvature(float64(2*lane.one.damping*phase), float64(phase*phase))
+	if lane.cuts > 1 {
+		force, curve, slope = 1, 0, 0 // their bend is what bounds ü
+	}
 	for l, c := range candidates {
 		s.rays.Cos[l], s.rays.Sin[l] = compass.Cos[c.direction], compass.Sin[c.direction]
 		s.screen.Force[l] = float64(force * float64(n*n))
-		s.screen.Curve[l], s.screen.Slope[l] = curve, slope
+		s.screen.Curve[l], s.screen.Slope[l], s.screen.Best[l] = curve, slope, 0
 	}
 }
 
 // follow returns the greater of best and the greatest |u| of a piece in a
 // direction, with the displacements at its ends.
 func (r *rotation) follow(best float64, lane *rotatedLane, s *piece, u, end, cos, sin float64) float64 {
-	if lane.piece.bound(max(math.Abs(u), math.Abs(end)), s.ground) <= best {
+	if lane.piece.bound(max(math.Abs(u), math.Abs(end)), s.bend) <= best {
 		return best
 	}
 	o := lane.one

@@ -18,15 +18,28 @@ const half = Directions / 2
 // Let floor be a number that D exceeds in more than half of the directions, 91 of
 // 180, because L does or because begin knows it. Then the lower of the middle two
 // values of D exceeds it, and |u| up to it changes neither that value nor any
-// above it. So a point matters only if in some direction it is farther out than
-// max(L(θ), floor). The fence surrounds a region without such points.
+// above it. Let ceiling be a number that both middle values are taken not to
+// exceed, which is seen at the end. Then a direction with L(θ) >= ceiling is above
+// them whatever else the motion does in it. So a point matters only if in some
+// direction it is farther out than the limit there: the greatest L where L has
+// reached the ceiling, and max(L(θ), floor) elsewhere. The fence surrounds a region
+// without such points.
 type polygon struct {
-	reach kernel.Outline // L
-	floor float64
-	fence [kernel.Sides]kernel.Point // normals of sides over their distances
-	least float64                    // of those
-	set   kernel.Above               // here, as form, because what kernels use must not be allocated
-	form  kernel.Form
+	reach          kernel.Outline          // L
+	limits         kernel.Outline          // of all directions, as enclose found them
+	round          [Directions + 1]float64 // the limits from the first side round to it again
+	floor, ceiling float64
+	fence          [kernel.Sides]side
+	slack          float64      // what the fence has needed
+	least          float64      // the least distance of a side
+	set            kernel.Above // here, as form, because what kernels use must not be allocated
+	form           kernel.Form
+}
+
+// side is one of a fence: its distance along a direction.
+type side struct {
+	direction int
+	distance  float64
 }
 
 // begin sets what is known from the D of both components. The motion has a point
@@ -35,7 +48,7 @@ type polygon struct {
 func (p *polygon) begin(first, second float64) {
 	p.reach = kernel.Outline{}
 	p.reach[0], p.reach[half] = first, second
-	p.floor = float64(0.69 * max(first, second))
+	p.floor, p.ceiling, p.slack = float64(0.69*max(first, second)), math.Inf(1), leastSlack
 }
 
 // sweep is the angle between the directions of a kernel.Sweep, in degrees.
@@ -67,8 +80,6 @@ func (p *polygon) settle(tops *kernel.Sweep, l int, unit float64) {
 		}
 	}
 	p.repeat()
-	p.raise(10)
-	p.enclose()
 }
 
 // lessRounding returns x − y, both not negative, less what rounding of them can
@@ -121,53 +132,94 @@ func (p *polygon) raise(bisections int) (top float64) {
 	return top
 }
 
-// enclose sets the fence, and least.
+// enclose sets the limits and the fence.
 func (p *polygon) enclose() {
-	var tangent [kernel.Sides + 1]float64
-	share := p.tangents(tangent[:])
-	p.least = math.Inf(1)
-	const side = Directions / kernel.Sides
-	for k := range p.fence {
-		distance := float64(share * tangent[k])
-		p.fence[k] = kernel.Point{X: compass.Cos[k*side] / distance, Y: compass.Sin[k*side] / distance}
-		p.least = min(p.least, distance)
+	top := kernel.Greatest(&p.reach)
+	first := 0
+	for i, x := range &p.reach {
+		if x >= p.ceiling {
+			x, first = top, i+1 // a fence best begins where limits fall
+		}
+		p.limits[i] = max(x, p.floor)
+	}
+	if first >= Directions {
+		first = 0
+	}
+	n := copy(p.round[:], p.limits[first:Directions])
+	copy(p.round[n:], p.limits[:first+1])
+	for !p.wrap(first) {
+		p.slack *= 2
 	}
 }
 
-// tangents sets list to max(L(θ), floor) in evenly spaced directions, the first
-// again at the end, and returns the share that they are to be drawn in by so that
-// their corners keep within it in the directions between. Between two of them, n
-// degrees apart, the corner's distance in direction θ is that of both, weighed
-// with sines.
-func (p *polygon) tangents(list []float64) (share float64) {
-	last := len(list) - 1
-	n := Directions / last
-	for k := range last {
-		list[k] = max(p.reach[k*n], p.floor)
-	}
-	list[last] = list[0]
-	share = 1
-	whole := compass.Sin[n]
-	for k := range last {
-		from, to := list[k]/whole, list[k+1]/whole
-		for i := 1; i < n; i++ {
-			corner := float64(from*compass.Sin[n-i]) + float64(to*compass.Sin[i])
-			if x := max(p.reach[k*n+i], p.floor); x < float64(share*corner) {
-				share = x / corner
+// leastSlack is the share by which corners of a fence may be beyond the limits, so
+// that the whole is drawn in by it, at least; widestSide is the greatest angle
+// between two sides in degrees.
+const (
+	leastSlack = 0.006
+	widestSide = 45
+)
+
+// wrap draws a fence that begins at direction first, with corners beyond the limits
+// by the slack at most, and reports whether it had sides enough.
+//
+// Between sides at directions i and j no point of the plane within both is farther
+// out than their corner. On the line of side i the corner is at a distance
+//
+//	t(j) = ℓ(j)/sin(j − i) − ℓ(i)/tan(j − i)
+//
+// from the foot of i, and within the limit ℓ(m) of a direction between if and only
+// if t(j) <= t(m). Each side is followed by the last one up to which that holds, ℓ(m)
+// raised by the slack.
+func (p *polygon) wrap(first int) bool {
+	share := 1 / (1 + p.slack)
+	p.least = math.Inf(1)
+	at := 0
+	for n := range p.fence {
+		distance := p.round[at]
+		p.fence[n] = side{(first + at) % Directions, float64(share * distance)}
+		p.least = min(p.least, p.fence[n].distance)
+		next, most := at+1, math.Inf(1)
+		for j, x := range p.round[at+1 : min(at+widestSide, Directions)+1] {
+			a := &angles[j+1]
+			t := float64(x*a.cosecant) - float64(distance*a.cotangent)
+			if t > most {
+				break
 			}
+			next, most = at+1+j, min(most, t+float64(p.slack*float64(x*a.cosecant)))
+		}
+		if at = next; at == Directions {
+			for n++; n < len(p.fence); n++ {
+				p.fence[n] = p.fence[0]
+			}
+			return true
 		}
 	}
-	return share
+	return false
 }
 
-// isBeyond reports whether a point is not within a share of the fence. The nearest
-// sides are least away, which settles most points.
+// angles holds 1/sin and 1/tan of the angles between sides, from 1°.
+var angles = func() (list [widestSide + 1]struct{ cosecant, cotangent float64 }) {
+	for i := 1; i < len(list); i++ {
+		list[i].cosecant, list[i].cotangent = 1/compass.Sin[i], compass.Cos[i]/compass.Sin[i]
+	}
+	return list
+}()
+
+// normal returns the direction of a side over its distance.
+func (s *side) normal() (x, y float64) {
+	return compass.Cos[s.direction] / s.distance, compass.Sin[s.direction] / s.distance
+}
+
+// isBeyond reports whether a point is not within a share of the fence. The least
+// distance settles most points.
 func (p *polygon) isBeyond(x, y, share float64) bool {
 	if inner := float64(share * p.least); share > 0 && float64(x*x)+float64(y*y) < float64(inner*inner) {
 		return false
 	}
 	for i := range p.fence {
-		if math.Abs(toward(x, y, p.fence[i].X, p.fence[i].Y)) > share {
+		s := &p.fence[i]
+		if math.Abs(toward(x, y, compass.Cos[s.direction], compass.Sin[s.direction])) > float64(share*s.distance) {
 			return true
 		}
 	}
@@ -176,27 +228,30 @@ func (p *polygon) isBeyond(x, y, share float64) bool {
 
 // above returns how many of L exceed x.
 func (p *polygon) above(x float64) int {
-	set := &p.set
-	p.reach.Above(x, set)
+	p.reach.Above(x, &p.set)
+	return countOf(&p.set)
+}
+
+func countOf(set *kernel.Above) int {
 	return bits.OnesCount64(set[0]) + bits.OnesCount64(set[1]) + bits.OnesCount64(set[2])
 }
 
 // surrounds reports whether the sum of a free vibration in the plane, from (x, y)
 // with velocities (vx, vy) over ω, and of a motion on the straight line between two
-// points cannot matter: in direction θ it is at most
+// points keeps within limits, each at least the floor: in direction θ it is at most
 //
 //	√((x·cos θ + y·sin θ)² + (vx·cos θ + vy·sin θ)²)
 //
 // from that line, the square of which is a constant with a cosine and a sine of
 // 2θ. The constant is raised by what rounding can take from the square where it
 // is small.
-func (p *polygon) surrounds(x, vx, y, vy float64, from, to kernel.Point) bool {
+func (p *polygon) surrounds(limits *kernel.Outline, floor, x, vx, y, vy float64, from, to kernel.Point) bool {
 	first, second := float64(x*x)+float64(vx*vx), float64(y*y)+float64(vy*vy)
 	p.form = kernel.Form{
 		Middle: float64((0.5 + 0x1p-48) * (first + second)), Cosine: float64(0.5 * (first - second)),
-		Sine: float64(x*y) + float64(vx*vy), Floor: p.floor, Points: [2]kernel.Point{from, to},
+		Sine: float64(x*y) + float64(vx*vy), Floor: floor, Points: [2]kernel.Point{from, to},
 	}
-	return !p.reach.Exceeds(&compass, &twice, &p.form)
+	return !limits.Exceeds(&compass, &twice, &p.form)
 }
 
 // compass holds the cosines and sines of the directions, twice those of double

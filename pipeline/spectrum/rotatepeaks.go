@@ -80,7 +80,7 @@ func (p *groundPath) peaks(points []kernel.Point, peak func(*groundStep) float64
 		if reach(points[k].X, points[k].Y)+excess <= outline.floor && reach(points[k+1].X, points[k+1].Y)+excess <= outline.floor {
 			continue
 		}
-		if !outline.surrounds(excess, 0, 0, excess, points[k], points[k+1]) {
+		if !outline.surrounds(&outline.reach, outline.floor, excess, 0, 0, excess, points[k], points[k+1]) {
 			p.look(outline, k, points, excess, peak)
 		}
 	}

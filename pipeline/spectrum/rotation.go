@@ -14,9 +14,11 @@ import (
 // Vectors of the plane obey the bounds of single components, because their length
 // is the greatest of their components over all directions, and lengths of bounds
 // bound it. So blocks of steps are passed over where a bound on |u| stays below
-// the floor of a lane. The others are marched again, and what in them is not
-// within the fence of a lane is gathered in pieces. From these follow, at the end,
-// the directions whose D must be known, and their D.
+// the floor of a lane. Of the others the most promising are marched again first, and
+// tell roughly what each lane reaches in all directions. Then all are, and what in
+// them is not within the fence of a lane is gathered in pieces. From these follow,
+// at the end, the directions whose D must be known, and their D. A lane whose ceiling
+// turns out to be too low is searched again with a higher one.
 type rotation struct {
 	pair                  [2]*motion
 	blockNorms, stepNorms []kernel.Line // blockLines and stepLines of both as lengths
@@ -28,6 +30,7 @@ type rotation struct {
 	points                []kernel.Point
 	order                 []int                // blocks
 	levels                [maxLevel + 1]uint32 // slow: the lanes whose pieces have 2ⁱ steps
+	every                 int                  // slow: the least number of steps in a piece
 	first, second         []float64            // D of the components
 	directions            directions
 	sweep                 *kernel.Sweep
@@ -47,6 +50,10 @@ func newSpan(phase, damping, n float64) span {
 	return span{growth, float64(float64(n*n) * reach)}
 }
 
+// bent is the span of parts, of which a bound on ü is known: |u| exceeds that at
+// both ends by an eighth of it at most.
+var bent = span{1, 0.125}
+
 func (s *span) bound(u, a float64) float64 { return s.growth * (u + float64(s.reach*a)) }
 
 // rotatedLane is one oscillator of the group in hand.
@@ -55,28 +62,32 @@ func (s *span) bound(u, a float64) float64 { return s.growth * (u + float64(s.re
 // its period is short, else one step or several (every).
 type rotatedLane struct {
 	polygon
-	index   int
-	phase   float64 // of whole steps
-	ringing *ringing
-	one     *slow   // the oscillator, the shortest piece its step
-	cuts    int     // those in a step
-	whole   line    // of whole steps
-	every   int     // steps in a piece, 1 if cut
-	unit    float64 // of displacements that are swept
-	rows    span    // over the time between two samples that are looked at
-	piece   span    // over a piece, time in steps of one
-	pieces  []piece
-	wide    int  // pieces that the polygon has taken in
-	fenced  bool // whether the rotation has the fence of the polygon
+	index    int
+	phase    float64 // of whole steps
+	ringing  *ringing
+	end      pairEnd // of the motion
+	one      *slow   // the oscillator, the shortest piece its step
+	cuts     int     // those in a step
+	whole    line    // of whole steps
+	every    int     // steps in a piece, 1 if cut
+	unit     float64 // of displacements that are swept
+	rows     span    // over the time between two samples that are looked at
+	part     span    // over a part of a step, or over a step that is not cut
+	piece    span    // over a piece, with its bend for the ground acceleration
+	pieces   []piece
+	wide     int  // pieces that the polygon has taken in
+	fenced   bool // whether the rotation has the fence of the polygon
+	searches int  // with ceilings that were too low
 }
 
 // piece is one that can matter: where it starts, how many steps it takes in, the
 // displacements of both motions at its start, at the next sample and at its end,
-// and the greatest length of the ground acceleration, in steps of one.
+// and a bound on the length of ü of a part, or of the ground acceleration of steps,
+// in steps of one.
 type piece struct {
 	sample, part, every            int
 	x, y, xNext, yNext, xEnd, yEnd float64
-	ground                         float64
+	bend                           float64
 }
 
 // absorbPieces is how many pieces a lane gathers before its polygon takes them
@@ -156,13 +167,13 @@ func (r *rotation) begin(l, index int, phase float64, ringing *ringing) *rotated
 	lane := &r.lane[l]
 	lane.index, lane.phase, lane.ringing = index, phase, ringing
 	lane.polygon.begin(r.first[index], r.second[index])
-	lane.pieces, lane.wide, lane.every, lane.fenced, lane.unit = lane.pieces[:0], 0, 1, false, 1
+	lane.pieces, lane.wide, lane.every, lane.fenced, lane.unit, lane.searches = lane.pieces[:0], 0, 1, false, 1, 0
 	return lane
 }
 
 // sweptBlocks is how many blocks of a group are swept before any is looked at
 // closely: enough to know roughly what its motions reach in all directions.
-const sweptBlocks = 10
+const sweptBlocks = 20
 
 // pairGroup is a group of oscillators, slow or fast.
 type pairGroup interface {
@@ -183,12 +194,15 @@ func (r *rotation) solve(g pairGroup, lines []kernel.Line, dst50, dst100 []float
 	g.march(second)
 	marks := r.marks()
 	kernel.JoinPeaks(marks, marks, second.marks[:len(marks)], g.areSquares())
-	r.collect(g, lines)
 	for live := g.live(); live != 0; live &= live - 1 {
 		l := bits.TrailingZeros32(live)
 		lane, x, y := &r.lane[l], g.last(first, l), g.last(second, l)
-		end := pairEnd{x.x, y.x, x.y / lane.phase, y.y / lane.phase}
-		dst50[lane.index], dst100[lane.index] = r.finish(lane, end)
+		lane.end = pairEnd{x.x, y.x, x.y / lane.phase, y.y / lane.phase}
+	}
+	r.collect(g, lines)
+	for live := g.live(); live != 0; live &= live - 1 {
+		lane := &r.lane[bits.TrailingZeros32(live)]
+		dst50[lane.index], dst100[lane.index] = r.finish(lane)
 	}
 }
 
@@ -202,12 +216,71 @@ func (r *rotation) collect(g pairGroup, lines []kernel.Line) {
 		g.sweep(r, b)
 	}
 	r.settle(g.live())
-	for _, b := range order {
-		g.limitPair(r)
-		flags := r.passing(b, lines) & g.live()
-		g.gather(r, b, flags)
-		r.absorb(flags)
+	for wanted := g.live(); wanted != 0; wanted = r.misjudged(wanted) {
+		r.gather(g, lines, wanted)
 	}
+}
+
+// maxSearches is how many searches are made of a lane, the last without a ceiling.
+const maxSearches = 4
+
+// gather gathers the pieces of the lanes flagged from the blocks in order.
+func (r *rotation) gather(g pairGroup, lines []kernel.Line, want uint32) {
+	g.limitPair(r)
+	for _, b := range r.order {
+		flags := r.passing(b, lines) & want
+		g.gather(r, b, flags)
+		if r.absorb(flags) {
+			g.limitPair(r)
+		}
+	}
+	for ; want != 0; want &= want - 1 {
+		r.widen(&r.lane[bits.TrailingZeros32(want)])
+	}
+}
+
+// misjudged flags the lanes whose middle values of D may exceed the ceiling, and
+// makes them ready for another search with a higher one, at last without any.
+func (r *rotation) misjudged(searched uint32) (found uint32) {
+	for ; searched != 0; searched &= searched - 1 {
+		l := bits.TrailingZeros32(searched)
+		lane := &r.lane[l]
+		if lane.exceeding() < half {
+			continue
+		}
+		found |= 1 << l
+		lane.pieces, lane.wide, lane.fenced = lane.pieces[:0], 0, false
+		lane.raise(7)
+		if lane.searches++; lane.searches < maxSearches {
+			lane.estimate()
+		} else {
+			lane.ceiling = math.Inf(1)
+			lane.enclose()
+		}
+	}
+	return found
+}
+
+// exceeding returns in how many directions D may exceed the ceiling.
+func (lane *rotatedLane) exceeding() (count int) {
+	set := &lane.set
+	lane.reach.Above(lane.under(lane.ceiling, lane.bend()), set)
+	if lane.end.length() > lane.ceiling {
+		for i := range Directions {
+			if lane.end.reach(i) > lane.ceiling {
+				set[i/64] |= 1 << (i % 64)
+			}
+		}
+	}
+	return countOf(set)
+}
+
+// bend returns the greatest bend of the pieces.
+func (lane *rotatedLane) bend() (most float64) {
+	for i := range lane.pieces {
+		most = max(most, lane.pieces[i].bend)
+	}
+	return most
 }
 
 // inOrder lists the blocks that can matter, those first that have the greatest
@@ -231,8 +304,27 @@ func (r *rotation) inOrder(lines []kernel.Line, live uint32) []int {
 func (r *rotation) settle(live uint32) {
 	for ; live != 0; live &= live - 1 {
 		l := bits.TrailingZeros32(live)
-		r.lane[l].settle(r.sweep, l, r.lane[l].unit)
+		lane := &r.lane[l]
+		lane.settle(r.sweep, l, lane.unit)
+		if lane.one.damping == 0 {
+			lane.ring()
+		}
+		lane.raise(7)
+		lane.estimate()
 	}
+}
+
+// estimate sets the ceiling above what the floor is likely to rise to, the more the
+// farther apart samples are and the less the motion dies away: the floor of a sweep
+// is below the median by a few per cent as a rule.
+func (lane *rotatedLane) estimate() {
+	phase := float64(lane.phase * float64(lane.every))
+	share := 1.04 + min(float64(phase*phase)*0.125, 0.1)
+	if lane.one.damping < freeDamping {
+		share += 0.12
+	}
+	lane.ceiling = float64(share * lane.floor)
+	lane.enclose()
 }
 
 // passing flags the lanes that a block can still matter to.
@@ -243,19 +335,26 @@ func (r *rotation) passing(b int, lines []kernel.Line) uint32 {
 }
 
 // absorb takes the pieces that lanes have gathered into their polygons, if there
-// are enough of them.
-func (r *rotation) absorb(flags uint32) {
+// are enough of them, and reports whether it did.
+func (r *rotation) absorb(flags uint32) (done bool) {
 	for ; flags != 0; flags &= flags - 1 {
 		lane := &r.lane[bits.TrailingZeros32(flags)]
 		if len(lane.pieces)-lane.wide < absorbPieces {
 			continue
 		}
-		r.points = lane.points(r.points[:0])
-		lane.widen(r.points)
+		done = true
+		r.widen(lane)
 		lane.raise(6)
 		lane.enclose()
 		lane.fenced = false
 	}
+	return done
+}
+
+// widen takes the pieces that a lane has gathered into its L.
+func (r *rotation) widen(lane *rotatedLane) {
+	r.points = lane.points(r.points[:0])
+	lane.widen(r.points)
 }
 
 // points appends the ends of the pieces that the polygon has not taken in yet.
@@ -298,7 +397,7 @@ func (lane *rotatedLane) gatherStep(sample int, x, y groundedStep, a float64) {
 		yLine, yRise := w.line(y.a, y.next)
 		from, to := kernel.Point{X: xLine, Y: yLine}, kernel.Point{X: xLine + xRise, Y: yLine + yRise}
 		vx, vy := float64((x.v-xRise)*w.inverse), float64((y.v-yRise)*w.inverse)
-		if lane.surrounds(x.u-xLine, vx, y.u-yLine, vy, from, to) {
+		if lane.surrounds(&lane.limits, 0, x.u-xLine, vx, y.u-yLine, vy, from, to) {
 			return
 		}
 	}
@@ -327,17 +426,21 @@ func (w *line) line(a, next float64) (at, rise float64) {
 func (lane *rotatedLane) gatherParts(sample int, first, second parts, a float64) {
 	o := lane.one
 	a = float64(a * first.square)
-	limit := lane.within(&lane.piece, a)
+	limit := lane.within(&lane.part, a)
 	outside := lane.isBeyond(first.u, second.u, limit)
 	for part := range lane.cuts {
-		x, y := first.u, second.u
+		x, y := first, second
 		first.next(o)
 		second.next(o)
 		next := lane.isBeyond(first.u, second.u, limit)
 		if outside || next {
+			bend := a
+			if lane.cuts > 1 {
+				bend = float64(o.growth * max(reach(x.bend(o), y.bend(o)), reach(first.bend(o), second.bend(o))))
+			}
 			lane.pieces = append(lane.pieces, piece{
-				sample: sample, part: part, every: 1, x: x, y: y,
-				xNext: first.u, yNext: second.u, xEnd: first.u, yEnd: second.u, ground: a})
+				sample: sample, part: part, every: 1, x: x.u, y: y.u,
+				xNext: first.u, yNext: second.u, xEnd: first.u, yEnd: second.u, bend: bend})
 		}
 		outside = next
 	}
@@ -357,4 +460,9 @@ func (p *parts) next(o *slow) {
 	next := p.a + p.rise
 	p.u, p.v = p.u+o.change(p.u, p.v, p.a, next), o.arrival(p.u, p.v, p.a, next)
 	p.a = next
+}
+
+// bend returns ü, but for its sign.
+func (p *parts) bend(o *slow) float64 {
+	return math.FMA(o.series.linear, p.v, math.FMA(o.series.square, p.u, p.a))
 }

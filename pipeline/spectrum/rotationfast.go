@@ -1,7 +1,6 @@
 package spectrum
 
 import (
-	"math"
 	"math/bits"
 
 	"swaybook/pipeline/internal/kernel"
@@ -15,7 +14,7 @@ func (g *fastGroup) rotate(r *rotation, dst50, dst100 []float64) {
 		lane := r.begin(l, o.index, o.phase, &o.ringing)
 		lane.one, lane.cuts, lane.whole = &o.part, o.parts, newLine(o.phase, o.part.damping)
 		r.displaced.Scale[l], r.displaced.Slope[l], r.displaced.Level[l] = 1/o.cube, o.turn.jump/o.cube, -o.phase/o.cube
-		lane.piece = newSpan(o.part.phase, o.part.damping, 1)
+		lane.part, lane.piece = newSpan(o.part.phase, o.part.damping, 1), bent
 	}
 	r.solve(g, r.blockNorms, dst50, dst100)
 }
@@ -50,7 +49,7 @@ func (g *fastGroup) sweep(r *rotation, b int) {
 	for _, m := range r.pair {
 		kernel.Displace(m.rows[:n], r.displaced, m.states[:n], m.a[from:to+1])
 	}
-	r.sweep.Add(&sweepCompass, r.pair[0].rows[:n], r.pair[1].rows[:n])
+	r.sweep.Add(&sweepCompass, r.pair[0].rows[:n], r.pair[1].rows[:n], 1)
 }
 
 // gather marches a block of both motions again and collects the parts of steps
@@ -81,17 +80,13 @@ func (g *fastGroup) setFence(r *rotation, flags uint32) {
 			continue
 		}
 		lane.fenced = true
-		var tangent [kernel.OrbitSides + 1]float64
-		share := lane.tangents(tangent[:])
-		least := math.Inf(1)
-		for k := range r.orbits.Sides {
-			const side = Directions / kernel.OrbitSides
-			distance := float64(float64(share*tangent[k]) * o.cube)
-			x, y := compass.Cos[k*side]/distance, compass.Sin[k*side]/distance
+		for k := range lane.fence {
+			x, y := lane.fence[k].normal()
+			x, y = x/o.cube, y/o.cube
 			sides := &r.orbits.Sides[k]
 			sides.XX[l], sides.XY[l], sides.YY[l] = float64(x*x), float64(2*float64(x*y)), float64(y*y)
-			least = min(least, distance)
 		}
+		least := float64(lane.least * o.cube)
 		r.orbits.First[l], r.orbits.Second[l] = o.phase/least, o.turn.jump/least
 		r.orbits.Inner[l] = 1 / float64(least*least)
 	}

@@ -14,6 +14,7 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 		g.begin(r, l)
 	}
 	r.levels = r.lanesByEvery(g.live())
+	r.every = r.leastEvery()
 	lines := r.blockNorms
 	if g.stride != nil {
 		lines = r.strideNorms[g.level]
@@ -23,7 +24,7 @@ func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
 
 // closeness is what the ground and the spring may add between the ends of a
 // piece of several steps, as a share of D.
-const closeness = 0.002
+const closeness = 0.004
 
 // maxEvery is the greatest number of steps in a piece, 2 to the power of maxLevel
 // and a divisor of blockSteps.
@@ -45,7 +46,11 @@ func (g *slowGroup) begin(r *rotation, l int) {
 	}
 	lane.whole = newLine(o.phase, o.damping)
 	lane.rows = newSpan(o.phase, o.damping, float64(lane.every))
-	lane.piece = newSpan(lane.one.phase, o.damping, float64(lane.every))
+	lane.part = newSpan(lane.one.phase, o.damping, 1)
+	lane.piece = lane.rows
+	if lane.cuts > 1 {
+		lane.piece = bent
+	}
 }
 
 // everyOf returns a number of steps, a power of two, over which the bound of func
@@ -95,7 +100,7 @@ func (g *slowGroup) traceBoth(r *rotation, b int, flags uint32) (from, rows int)
 // sweep marches a block of both motions again and sweeps their samples.
 func (g *slowGroup) sweep(r *rotation, b int) {
 	_, rows := g.traceBoth(r, b, g.live())
-	r.sweep.Add(&sweepCompass, r.pair[0].rows[:rows], r.pair[1].rows[:rows])
+	r.sweep.Add(&sweepCompass, r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.every)
 }
 
 // gather marches a block of both motions again and collects the pieces that can
@@ -107,17 +112,18 @@ func (g *slowGroup) gather(r *rotation, b int, flags uint32) {
 	from, rows := g.traceBoth(r, b, flags)
 	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
 	g.setFence(r, flags, r.blockNorms[b].First)
-	kernel.ScreenFence(r.fence, x, y, rowFlags, flags)
 	if from == 1 {
 		g.gatherFirst(r, flags)
 	}
 	if rows <= blockSteps { // in a block that is not whole pieces are steps
-		g.gatherPieces(r, from, rows, 1, r.blockNorms[b].First, flags)
+		kernel.ScreenFence(r.fence, x, y, 1, rowFlags, flags)
+		g.gatherPieces(r, from, rows, 1, flags)
 		return
 	}
+	kernel.ScreenFence(r.fence, x, y, r.every, rowFlags, flags)
 	for i, level := range r.levels {
 		if chosen := flags & level; chosen != 0 {
-			g.gatherPieces(r, from, rows, 1<<i, r.blockNorms[b].First, chosen)
+			g.gatherPieces(r, from, rows, 1<<i, chosen)
 		}
 	}
 }
@@ -129,6 +135,16 @@ func (r *rotation) lanesByEvery(live uint32) (levels [maxLevel + 1]uint32) {
 		levels[bits.TrailingZeros(uint(r.lane[l].every))] |= 1 << l
 	}
 	return levels
+}
+
+// leastEvery returns the least number of steps in a piece.
+func (r *rotation) leastEvery() int {
+	for i, lanes := range r.levels {
+		if lanes != 0 {
+			return 1 << i
+		}
+	}
+	return 1
 }
 
 // setFence sets the limits of lanes for a block with ground accelerations up to a.
@@ -143,14 +159,14 @@ func (g *slowGroup) setFence(r *rotation, flags uint32, a float64) {
 		lane.fenced = true
 		scale := g.members[l].eq.scale
 		for k := range lane.fence {
-			r.fence.Sides[k].X[l], r.fence.Sides[k].Y[l] = float64(scale*lane.fence[k].X), float64(scale*lane.fence[k].Y)
+			x, y := lane.fence[k].normal()
+			r.fence.Sides[k].X[l], r.fence.Sides[k].Y[l] = float64(scale*x), float64(scale*y)
 		}
 	}
 }
 
-// gatherPieces collects the pieces of so many steps that are not within the fence,
-// with a the greatest length of the ground acceleration in the block.
-func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, a float64, flags uint32) {
+// gatherPieces collects the pieces of so many steps that are not within the fence.
+func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, flags uint32) {
 	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
 	for k := 0; k+every < rows; k += every {
 		for left := (rowFlags[k] | rowFlags[k+every]) & flags; left != 0; left &= left - 1 {
@@ -161,12 +177,20 @@ func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, a float64, 
 				continue
 			}
 			lane.pieces = append(lane.pieces, piece{
-				sample: from + k, every: every, ground: a,
+				sample: from + k, every: every, bend: greatestLine(r.stepNorms[from+k : from+k+every]),
 				x: float64(scale * x[k][l]), y: float64(scale * y[k][l]),
 				xNext: float64(scale * x[k+1][l]), yNext: float64(scale * y[k+1][l]),
 				xEnd: float64(scale * x[k+every][l]), yEnd: float64(scale * y[k+every][l])})
 		}
 	}
+}
+
+// greatestLine returns the greatest first number of lines, none negative.
+func greatestLine(lines []kernel.Line) (top float64) {
+	for i := range lines {
+		top = max(top, lines[i].First)
+	}
+	return top
 }
 
 // gatherStep collects the parts of a step from row k.

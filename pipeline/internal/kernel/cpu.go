@@ -25,12 +25,12 @@ type level struct {
 	widen         func(o *Outline, c *Compass, points *Point, n int)
 	above         func(o *Outline, x float64, set *Above)
 	screenOrbits  func(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32)
-	sweep         func(s *Sweep, c *SweepCompass, x, y *Row, n int)
+	sweep         func(s *Sweep, c *SweepCompass, x, y *Row, n, every int)
 	displace      func(rows *Row, q *Displaced, states *Mark, a *float64, n int)
 	exceeds       func(o *Outline, c, twice *Compass, f *Form) uint64
 	greatestOf    func(o *Outline) float64
 	project       func(rows *Row, rays *Rays, points *Point, n int, want uint32)
-	screenFence   func(f *Fence, x, y *Row, flags *uint32, n int, want uint32)
+	screenFence   func(f *Fence, x, y *Row, every int, flags *uint32, n int, want uint32)
 }
 
 var portable = level{

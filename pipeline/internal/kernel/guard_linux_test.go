@@ -109,7 +109,7 @@ func (c *planeCase) placed(p *placing) *planeCase {
 		points: copied(p, c.points), rowsX: copied(p, c.rowsX), rowsY: copied(p, c.rowsY),
 		marksX: copied(p, c.marksX), marks: copied(p, c.marks), lines: copied(p, c.lines),
 		ground: copied(p, c.ground), compasses: one(p, *c.compasses), displaced: one(p, *c.displaced),
-		limit: c.limit, want: c.want, sweep: one(p, Sweep{}),
+		limit: c.limit, want: c.want, every: c.every, sweep: one(p, Sweep{}),
 		rows: place[Row](p, len(c.points)), level: place[Row](p, len(c.points)),
 	}
 	for i := range d.flags {
@@ -125,6 +125,7 @@ func TestGuardPages(t *testing.T) {
 	for _, n := range []int{1, 2, 3, 4, 5, 6, 7, 8, 9, 13, 16, 17, 31, 33, 64, 65, 66, 67, 130} {
 		c := newCase(uint64(n), n)
 		plane := newPlane(n, c.want, normal(uint64(n)))
+		plane.every = 1 + n%3
 		run := func(where string) string {
 			p := &placing{t, where}
 			d := plane.placed(p)

@@ -72,7 +72,7 @@ func exceedsAVX2(o *float64, c *float64, twice *float64, form *float64) uint64
 // sweepAVX2 is sweepGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func sweepAVX2(s *float64, c *float64, x *float64, y *float64, n int)
+func sweepAVX2(s *float64, c *float64, x *float64, y *float64, n int, every int)
 
 // displaceAVX2 is displaceGeneric for vectors of 4 lanes.
 //
@@ -87,7 +87,7 @@ func screenOrbitsAVX2(fence *float64, x *float64, y *float64, lines *float64, fl
 // screenFenceAVX2 is screenFenceGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func screenFenceAVX2(fence *float64, x *float64, y *float64, flags *uint32, n int, want uint32)
+func screenFenceAVX2(fence *float64, x *float64, y *float64, every int, flags *uint32, n int, want uint32)
 
 // greatestOfAVX2 is greatestOfGeneric for vectors of 4 lanes.
 //
@@ -167,7 +167,7 @@ func exceedsAVX512(o *float64, c *float64, twice *float64, form *float64) uint64
 // sweepAVX512 is sweepGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func sweepAVX512(s *float64, c *float64, x *float64, y *float64, n int)
+func sweepAVX512(s *float64, c *float64, x *float64, y *float64, n int, every int)
 
 // displaceAVX512 is displaceGeneric for vectors of 8 lanes.
 //
@@ -182,7 +182,7 @@ func screenOrbitsAVX512(fence *float64, x *float64, y *float64, lines *float64, 
 // screenFenceAVX512 is screenFenceGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func screenFenceAVX512(fence *float64, x *float64, y *float64, flags *uint32, n int, want uint32)
+func screenFenceAVX512(fence *float64, x *float64, y *float64, every int, flags *uint32, n int, want uint32)
 
 // greatestOfAVX512 is greatestOfGeneric for vectors of 8 lanes.
 //

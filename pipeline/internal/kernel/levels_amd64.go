@@ -126,9 +126,9 @@ func masking(f func(o *float64, x float64, set *uint64)) func(*Outline, float64,
 	return func(o *Outline, x float64, set *Above) { f(&o[0], x, &set[0]) }
 }
 
-func fencing(f func(fence, x, y *float64, flags *uint32, n int, want uint32)) func(*Fence, *Row, *Row, *uint32, int, uint32) {
-	return func(fence *Fence, x, y *Row, flags *uint32, n int, want uint32) {
-		f(&fence.Sides[0].X[0], &x[0], &y[0], flags, n, want)
+func fencing(f func(fence, x, y *float64, every int, flags *uint32, n int, want uint32)) func(*Fence, *Row, *Row, int, *uint32, int, uint32) {
+	return func(fence *Fence, x, y *Row, every int, flags *uint32, n int, want uint32) {
+		f(&fence.Sides[0].X[0], &x[0], &y[0], every, flags, n, want)
 	}
 }
 
@@ -154,8 +154,10 @@ func orbiting(f func(fence, x, y, lines *float64, flags *uint32, n int, want uin
 	}
 }
 
-func sweeping(f func(s, c, x, y *float64, n int)) func(*Sweep, *SweepCompass, *Row, *Row, int) {
-	return func(s *Sweep, c *SweepCompass, x, y *Row, n int) { f(&s[0][0], &c[0].Cos[0], &x[0], &y[0], n) }
+func sweeping(f func(s, c, x, y *float64, n, every int)) func(*Sweep, *SweepCompass, *Row, *Row, int, int) {
+	return func(s *Sweep, c *SweepCompass, x, y *Row, n, every int) {
+		f(&s[0][0], &c[0].Cos[0], &x[0], &y[0], n, every)
+	}
 }
 
 func displacing(f func(rows, q, states, a *float64, n int)) func(*Row, *Displaced, *Mark, *float64, int) {

@@ -81,13 +81,21 @@ type Sweep [Sweeps]Row
 // lanes of a vector.
 type SweepCompass [Sweeps]struct{ Cos, Sin [8]float64 }
 
-// Add raises the distances to the greatest |x·cos θ + y·sin θ| of the rows. It
-// panics if lengths differ.
-func (s *Sweep) Add(c *SweepCompass, x, y []Row) {
+// Add raises the distances to the greatest |x·cos θ + y·sin θ| of the first of
+// every so many rows. It panics if lengths differ or every is less than 1.
+func (s *Sweep) Add(c *SweepCompass, x, y []Row, every int) {
 	checkLines(len(x), len(y), len(y))
-	if len(x) > 0 {
-		current.sweep(s, c, &x[0], &y[0], len(x))
+	if n := countOf(len(x), every); n > 0 {
+		current.sweep(s, c, &x[0], &y[0], n, every)
 	}
+}
+
+// countOf returns the number of rows 0, every, 2·every, … of n.
+func countOf(n, every int) int {
+	if every < 1 {
+		panic("kernel: distance between rows is not positive")
+	}
+	return (n + every - 1) / every
 }
 
 // Displaced holds for each lane what makes displacements of free vibrations.
@@ -105,12 +113,8 @@ func Displace(rows []Row, q *Displaced, states []Mark, a []float64) {
 // Rays holds a direction for each lane.
 type Rays struct{ Cos, Sin Row }
 
-// Sides and OrbitSides are the numbers of pairs of sides of a Fence and of an
-// OrbitFence.
-const (
-	Sides      = 10
-	OrbitSides = 30
-)
+// Sides is the number of pairs of sides of a Fence and of an OrbitFence.
+const Sides = 12
 
 // Fence holds for each lane the region in which all of
 //
@@ -123,13 +127,13 @@ type Fence struct {
 }
 
 // ScreenFence sets bit l of flags[i] where (x[i][l], y[i][l]) is not within the
-// fence of lane l and l is one of the bits of want, and clears it elsewhere. It
-// panics if lengths differ.
-func ScreenFence(f *Fence, x, y []Row, flags []uint32, want uint32) {
+// fence of lane l, i is 0 or a multiple of every, and l is one of the bits of want,
+// and clears it elsewhere. It panics if lengths differ or every is less than 1.
+func ScreenFence(f *Fence, x, y []Row, every int, flags []uint32, want uint32) {
 	checkLines(len(x), len(y), len(flags))
 	clear(flags)
-	if len(x) > 0 {
-		current.screenFence(f, &x[0], &y[0], &flags[0], len(x), want)
+	if n := countOf(len(x), every); n > 0 {
+		current.screenFence(f, &x[0], &y[0], every, &flags[0], n, want)
 	}
 }
 
@@ -140,7 +144,7 @@ func ScreenFence(f *Fence, x, y []Row, flags []uint32, want uint32) {
 //
 // hold, or Inner·(x.X² + x.Y² + y.X² + y.Y²) in place of them.
 type OrbitFence struct {
-	Sides                [OrbitSides]struct{ XX, XY, YY Row }
+	Sides                [Sides]struct{ XX, XY, YY Row }
 	First, Second, Inner Row
 }
 
@@ -241,11 +245,12 @@ func projectGeneric(rows *Row, rays *Rays, points *Point, n int, want uint32) {
 	}
 }
 
-func screenFenceGeneric(f *Fence, x, y *Row, flags *uint32, n int, want uint32) {
-	xs, ys, out := unsafe.Slice(x, n), unsafe.Slice(y, n), unsafe.Slice(flags, n)
+func screenFenceGeneric(f *Fence, x, y *Row, every int, flags *uint32, n int, want uint32) {
+	last := (n - 1) * every
+	xs, ys, out := unsafe.Slice(x, last+1), unsafe.Slice(y, last+1), unsafe.Slice(flags, last+1)
 	for left := want; left != 0; left &= left - 1 {
 		l := bits.TrailingZeros32(left)
-		for i := range out {
+		for i := 0; i <= last; i += every {
 			u, v, top := xs[i][l], ys[i][l], 0.0
 			for k := range f.Sides {
 				side := &f.Sides[k]
@@ -287,11 +292,12 @@ func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, 
 	}
 }
 
-func sweepGeneric(s *Sweep, c *SweepCompass, x, y *Row, n int) {
-	xs, ys := unsafe.Slice(x, n), unsafe.Slice(y, n)
+func sweepGeneric(s *Sweep, c *SweepCompass, x, y *Row, n, every int) {
+	last := (n - 1) * every
+	xs, ys := unsafe.Slice(x, last+1), unsafe.Slice(y, last+1)
 	for k := range s {
 		cos, sin, tops := c[k].Cos[0], c[k].Sin[0], &s[k]
-		for i := range xs {
+		for i := 0; i <= last; i += every {
 			for l := range tops {
 				if d := math.Abs(math.FMA(cos, xs[i][l], float64(sin*ys[i][l]))); d > tops[l] {
 					tops[l] = d

@@ -28,6 +28,7 @@ type planeCase struct {
 	compasses     *SweepCompass
 	displaced     *Displaced
 	want          uint32
+	every         int // of Sweep.Add and ScreenFence
 
 	set      *Above
 	exceeds  bool
@@ -57,7 +58,7 @@ func newPlane(n int, want uint32, next func() float64) *planeCase {
 		points: make([]Point, n), rowsX: make([]Row, n), rowsY: make([]Row, n),
 		marksX: make([]Mark, n), marks: make([]Mark, n), lines: make([]Line, n),
 		ground: make([]float64, n+1), compasses: new(SweepCompass), displaced: new(Displaced),
-		rows: make([]Row, n), level: make([]Row, n), sweep: new(Sweep), want: want, limit: math.Abs(next()),
+		rows: make([]Row, n), level: make([]Row, n), sweep: new(Sweep), want: want, every: 1, limit: math.Abs(next()),
 	}
 	for i := range c.flags {
 		c.flags[i], c.sums[i] = make([]uint32, n), make([]Mark, n)
@@ -132,7 +133,7 @@ func (c *planeCase) run() {
 	for k := range c.sweep {
 		c.sweep[k] = Row(c.start[k : k+Lanes])
 	}
-	c.sweep.Add(c.compasses, c.rowsX, c.rowsY)
+	c.sweep.Add(c.compasses, c.rowsX, c.rowsY, c.every)
 	Displace(c.level, c.displaced, c.marksX, c.ground)
 	Widen(c.outline, c.compass, c.points)
 	c.outline.Above(c.limit, c.set)
@@ -144,7 +145,7 @@ func (c *planeCase) run() {
 			c.flags[i][j] = 0xdeadbeef
 		}
 	}
-	ScreenFence(c.fence, c.rowsX, c.rowsY, c.flags[0], c.want)
+	ScreenFence(c.fence, c.rowsX, c.rowsY, c.every, c.flags[0], c.want)
 	ScreenOrbits(c.orbits, c.marksX, c.marks, c.lines, c.flags[1], c.want)
 	JoinPeaks(c.sums[0], c.marksX, c.marks, false)
 	JoinPeaks(c.sums[1], c.marksX, c.marks, true)
@@ -229,6 +230,7 @@ func everyPlane(t *testing.T, label string, c *planeCase) {
 func TestPlaneKernelsAgree(t *testing.T) {
 	for n := range 71 {
 		c := newPlane(n, 0, normal(uint64(n)))
+		c.every = 1 + n%5
 		for _, c.want = range wantShapes() {
 			everyPlane(t, fmt.Sprintf("n %d want %#x", n, c.want), c)
 		}

@@ -206,36 +206,37 @@ func (l level) project() {
 	RET()
 }
 
-// fenceSides and orbitSides are kernel.Sides and kernel.OrbitSides.
-const fenceSides, orbitSides = 10, 30
+// fenceSides is kernel.Sides.
+const fenceSides = 12
 
 // screenFence takes a vector of lanes through all rows, without those that hold
 // no lane asked for.
 func (l level) screenFence() {
-	TEXT("screenFence"+l.name, NOSPLIT, "func(fence, x, y *float64, flags *uint32, n int, want uint32)")
+	TEXT("screenFence"+l.name, NOSPLIT, "func(fence, x, y *float64, every int, flags *uint32, n int, want uint32)")
 	Pragma("noescape")
 	Doc(fmt.Sprintf("screenFence%s is screenFenceGeneric for vectors of %d lanes.", l.name, l.width))
 	fence, x, y := Load(Param("fence"), GP64()), Load(Param("x"), GP64()), Load(Param("y"), GP64())
 	flags, n := Load(Param("flags"), GP64()), Load(Param("n"), GP64())
-	want := Load(Param("want"), GP32())
+	want, every := Load(Param("want"), GP32()), Load(Param("every"), GP64())
 	mask := l.absolute()
 	for v := range lanes / l.width {
 		next := fmt.Sprintf("skip%d", v)
 		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
 		JZ(operand.LabelRef(next))
-		l.fenceVector(fence, x, y, flags, n, want, v, mask)
+		l.fenceVector(fence, x, y, every, flags, n, want, v, mask)
 		Label(next)
 	}
 	VZEROUPPER()
 	RET()
 }
 
-func (l level) fenceVector(fence, x, y, flags, n, want reg.Register, v int, mask reg.VecVirtual) {
+func (l level) fenceVector(fence, x, y, every, flags, n, want reg.Register, v int, mask reg.VecVirtual) {
 	xs, ys, out, left := GP64(), GP64(), GP64(), GP64()
 	MOVQ(x, xs)
 	MOVQ(y, ys)
 	MOVQ(flags, out)
 	MOVQ(n, left)
+	step := rowsOf(every)
 	sides := make([]operand.Op, 2*fenceSides)
 	for i := range sides {
 		sides[i] = l.at(fence, i, 0, v)
@@ -269,10 +270,17 @@ func (l level) fenceVector(fence, x, y, flags, n, want reg.Register, v int, mask
 		}
 		ANDL(want, bits)
 		ORL(bits, operand.Mem{Base: out})
-		ADDQ(operand.U32(row), xs)
-		ADDQ(operand.U32(row), ys)
-		SUBQ(operand.Imm(4), out) // the loop moves on by 8
+		ADDQ(step, xs)
+		ADDQ(step, ys)
+		LEAQ(operand.Mem{Base: out, Index: every, Scale: 4, Disp: -8}, out) // the loop moves on by 8
 	})
+}
+
+// rowsOf returns the bytes of so many rows.
+func rowsOf(n reg.Register) reg.Register {
+	bytes := GP64()
+	IMUL3Q(operand.U32(row), n, bytes)
+	return bytes
 }
 
 // screenOrbits takes a vector of lanes through all rows, without those that hold
@@ -325,20 +333,20 @@ func (l level) orbitVector(in map[string]reg.Register, want reg.Register, v int,
 		r, s := l.vector(), l.vector()
 		VMOVAPD(one, r)
 		VBROADCASTSD(operand.Mem{Base: lines}, s)
-		VFNMADD231PD(l.at(fence, 3*orbitSides, 0, v), s, r)
+		VFNMADD231PD(l.at(fence, 3*fenceSides, 0, v), s, r)
 		VBROADCASTSD(operand.Mem{Base: lines, Disp: 8}, s)
-		VFNMADD231PD(l.at(fence, 3*orbitSides+1, 0, v), s, r)
+		VFNMADD231PD(l.at(fence, 3*fenceSides+1, 0, v), s, r)
 		VMAXPD(zero, r, r)
 		VMULPD(r, r, r)
 		VADDPD(yy, xx, s)
-		VMULPD(l.at(fence, 3*orbitSides+2, 0, v), s, s)
+		VMULPD(l.at(fence, 3*fenceSides+2, 0, v), s, s)
 		l.compare(s, r, inner)
 		TESTL(inner, inner)
 		JZ(operand.LabelRef(within))
 		VMULPD(b, d, xy)
 		VFMADD231PD(a, c, xy)
 		VMOVAPD(zero, top)
-		for k := range orbitSides {
+		for k := range fenceSides {
 			t := l.vector()
 			VMULPD(l.at(fence, 3*k+2, 0, v), yy, t)
 			VFMADD231PD(l.at(fence, 3*k+1, 0, v), xy, t)
@@ -366,26 +374,26 @@ const sweepCount = 18
 // sweep takes a vector of lanes through all rows, for as many directions at once
 // as registers hold.
 func (l level) sweep() {
-	TEXT("sweep"+l.name, NOSPLIT, "func(s, c, x, y *float64, n int)")
+	TEXT("sweep"+l.name, NOSPLIT, "func(s, c, x, y *float64, n, every int)")
 	Pragma("noescape")
 	Doc(fmt.Sprintf("sweep%s is sweepGeneric for vectors of %d lanes.", l.name, l.width))
 	s, c := Load(Param("s"), GP64()), Load(Param("c"), GP64())
 	x, y := Load(Param("x"), GP64()), Load(Param("y"), GP64())
-	n := Load(Param("n"), GP64())
+	n, step := Load(Param("n"), GP64()), rowsOf(Load(Param("every"), GP64()))
 	mask, count := l.absolute(), sweepCount
 	if !l.keep {
 		count = 6
 	}
 	for v := range lanes / l.width {
 		for k := 0; k < sweepCount; k += count {
-			l.sweepVector(s, c, x, y, n, v, k, count, mask)
+			l.sweepVector(s, c, x, y, n, step, v, k, count, mask)
 		}
 	}
 	VZEROUPPER()
 	RET()
 }
 
-func (l level) sweepVector(s, c, x, y, n reg.Register, v, from, count int, mask reg.VecVirtual) {
+func (l level) sweepVector(s, c, x, y, n, step reg.Register, v, from, count int, mask reg.VecVirtual) {
 	xs, ys, left := GP64(), GP64(), GP64()
 	MOVQ(x, xs)
 	MOVQ(y, ys)
@@ -407,8 +415,8 @@ func (l level) sweepVector(s, c, x, y, n reg.Register, v, from, count int, mask 
 		l.and(mask, t, t)
 		VMAXPD(tops[k], t, tops[k])
 	}
-	ADDQ(operand.U32(row), xs)
-	ADDQ(operand.U32(row), ys)
+	ADDQ(step, xs)
+	ADDQ(step, ys)
 	DECQ(left)
 	JNZ(operand.LabelRef(loop))
 	for k := range tops {
