@@ -124,7 +124,7 @@ func cutsOf(phase, damping float64) int {
 // unless there were more than maxParts: the shorter they are, the closer bounds on
 // them, and the more there are.
 const (
-	partPhase = 0.15
+	partPhase = 0.22
 	maxParts  = 24
 )
 
