@@ -23,14 +23,13 @@ type directions struct {
 	greatest           float64   // of them
 	high, chosen, best kernel.Above
 	points             []kernel.Point
-	pieceOf            []int // the piece that ends at each point, −1 for none
+	pieceOf            []int      // the piece that ends at each point, −1 for none
+	top, topRow        kernel.Row // the greatest |u| of each candidate and its row
 	lines              []kernel.Line
 	flags, seen        []uint32
 	rows               []kernel.Row
 	rays               *kernel.Rays
 	screen             *kernel.StepScreen
-	tops               *kernel.Screen
-	none               []kernel.Line // zeros
 }
 
 // chunk is how many steps between points are projected at once.
@@ -38,8 +37,8 @@ const chunk = 256
 
 func newDirections() directions {
 	return directions{
-		rows: make([]kernel.Row, chunk+1), flags: make([]uint32, chunk+1), none: make([]kernel.Line, chunk+1),
-		rays: new(kernel.Rays), screen: new(kernel.StepScreen), tops: new(kernel.Screen),
+		rows: make([]kernel.Row, chunk+1), flags: make([]uint32, chunk+1),
+		rays: new(kernel.Rays), screen: new(kernel.StepScreen),
 	}
 }
 
@@ -238,7 +237,6 @@ func (r *rotation) searchTops(lane *rotatedLane, candidates []candidate, from in
 	want, lead := uint32(0), -1
 	for l := range candidates {
 		c := &candidates[l]
-		s.tops.Limit[l] = math.Nextafter(lane.reach[c.direction], -1)
 		if !c.best {
 			want |= 1 << l
 		} else if lead < 0 || c.d > candidates[lead].d {
@@ -248,16 +246,16 @@ func (r *rotation) searchTops(lane *rotatedLane, candidates []candidate, from in
 	if lead >= 0 {
 		want |= 1 << lead
 	}
-	n := len(s.rows)
-	kernel.ScreenRows(s.tops, s.rows, s.none[:n], s.flags[:n])
-	for k, flags := range s.flags[:n] {
-		for flags &= want; flags != 0; flags &= flags - 1 {
-			l := bits.TrailingZeros32(flags)
-			if k > 0 && (k+1 == n || math.Abs(s.rows[k-1][l]) > math.Abs(s.rows[k+1][l])) {
-				r.look(lane, candidates, from, k, l)
-			} else if k+1 < n {
-				r.look(lane, candidates, from, k+1, l)
-			}
+	kernel.GreatestRows(&s.top, &s.topRow, s.rows)
+	for n := len(s.rows); want != 0; want &= want - 1 {
+		l := bits.TrailingZeros32(want)
+		k := int(s.topRow[l])
+		switch {
+		case s.top[l] < lane.reach[candidates[l].direction]:
+		case k > 0 && (k+1 == n || math.Abs(s.rows[k-1][l]) > math.Abs(s.rows[k+1][l])):
+			r.look(lane, candidates, from, k, l)
+		case k+1 < n:
+			r.look(lane, candidates, from, k+1, l)
 		}
 	}
 }

@@ -20,6 +20,7 @@ const lanes = kernel.Lanes
 type motion struct {
 	exponent int
 	a        []float64 // samples
+	padded   []float64 // samples and zeros, so that whole blocks can be gathered
 	bend     []float64 // change of slope at the end of each step; 0 for the last
 	// What bounds on |u| are made of: of each block of steps and each step the
 	// greatest |a|, ends included, and the greatest |a' − a|.
@@ -32,29 +33,25 @@ type motion struct {
 // allocated by itself, which aligns it to whole vectors: fields in the middle of
 // a struct need not be, and vectors across two cache lines cost twice.
 type search struct {
-	marks      []kernel.Mark // of each block of steps, and the state at the end
-	flags      []uint32      // of each block of steps: the lanes that it may hold the maximum of
-	done       []uint32      // of each block of steps: the lanes that it was searched for
-	rows       []kernel.Row  // slow: u at each sample of a block
-	rowFlags   []uint32      // of each sample of a block: the lanes that can matter there
-	states     []kernel.Mark // fast: the state at the start of each step of a block
-	stepFlags  []uint32      // of each step of a block: the lanes that may have the maximum there
-	seen       []uint32      // of each step of a block: the lanes that it is done with
-	stepScreen *kernel.StepScreen
-	screen     *kernel.Screen
-	tops       *kernel.Screen // passes the greatest samples
-	none       []kernel.Line  // zeros, a line for each sample of a block
-	top        *kernel.Row    // the greatest peak of each lane
-	start      *kernel.Mark   // the state that a block of strides is marched again from
-	best       [lanes]float64
+	marks     []kernel.Mark // of each block of steps, and the state at the end
+	flags     []uint32      // of each block of steps: the lanes that it may hold the maximum of
+	done      []uint32      // of each block of steps: the lanes that it was searched for
+	rows      []kernel.Row  // slow: u at each sample of a block
+	rowFlags  []uint32      // of each sample of a block: the lanes that can matter there
+	states    []kernel.Mark // fast: the state at the start of each step of a block
+	stepFlags []uint32      // of each step of a block: the lanes that may have the maximum there
+	screen    *kernel.Screen
+	top, at   *kernel.Row  // the greatest peak of each lane and the first block that has it
+	start     *kernel.Mark // the state that a block of strides is marched again from
+	visits    *visits
+	best      [lanes]float64
 }
 
 func newMotion() *motion {
 	return &motion{search: search{
 		rows: make([]kernel.Row, blockSteps+1), rowFlags: make([]uint32, blockSteps+1),
-		states: make([]kernel.Mark, blockSteps), stepFlags: make([]uint32, blockSteps), seen: make([]uint32, blockSteps),
-		stepScreen: new(kernel.StepScreen), screen: new(kernel.Screen), tops: new(kernel.Screen), none: make([]kernel.Line, blockSteps+1),
-		top: new(kernel.Row), start: new(kernel.Mark),
+		states: make([]kernel.Mark, blockSteps), stepFlags: make([]uint32, blockSteps), screen: new(kernel.Screen),
+		top: new(kernel.Row), at: new(kernel.Row), start: new(kernel.Mark), visits: newVisits(),
 	}}
 }
 
@@ -95,7 +92,9 @@ func (m *motion) scale(samples []float64, top float64) {
 	// In two halves, because 2^1074 is out of range.
 	half := -m.exponent / 2
 	f, g := math.Ldexp(1, half), math.Ldexp(1, -m.exponent-half)
-	m.a = resize(m.a, len(samples))
+	m.padded = resize(m.padded, len(samples)+gatheredRows)
+	m.a = m.padded[:len(samples)]
+	clear(m.padded[len(samples):])
 	scaled := m.a[:len(samples)]
 	for i, a := range samples {
 		scaled[i] = float64(a*f) * g
@@ -139,15 +138,17 @@ func measureSteps(lines []kernel.Line, bend, a []float64) (top kernel.Line) {
 	return kernel.Line{First: math.Float64frombits(greatest), Second: math.Float64frombits(steepest)}
 }
 
-// flagTops sets top to the greatest peak of each lane, and flags the blocks that
-// have it.
+// findTops sets top and at of the lanes.
+func (m *motion) findTops() { kernel.GreatestPeaks(m.top, m.at, m.marks[:m.blocks()]) }
+
+// flagTops finds the greatest peak of each lane and flags the first block that has
+// it.
 func (m *motion) flagTops(flags []uint32) {
-	marks := m.marks[:m.blocks()]
-	kernel.GreatestPeaks(m.top, marks)
-	for l := range m.top {
-		m.tops.Limit[l] = math.Nextafter(m.top[l], -1)
+	m.findTops()
+	clear(flags)
+	for l, b := range m.at {
+		flags[int(b)] |= 1 << l
 	}
-	kernel.ScreenPeaks(m.tops, marks, m.blockLines, flags)
 }
 
 // final is the state of a lane at the end of its march.

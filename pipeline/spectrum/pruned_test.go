@@ -74,13 +74,12 @@ func enterAll(o slow, a []float64) float64 {
 	g := &newSlowGroups([]slow{o})[0]
 	g.march(m)
 	g.sampled(m)
-	*m.stepScreen = *g.screen
 	m.best[0] = 0
 	for b := range m.blocks() {
-		g.enter(m, b, 1, false)
+		g.add(m, 0, b)
+		g.visit(m, false)
 	}
-	best, _, _ := o.series.peak(m.best[0], 0, 0, m.a[0], m.a[1]-m.a[0])
 	end := &m.marks[m.blocks()]
 	last := o.ending(m, state{end.X[0], end.Y[0]})
-	return math.Ldexp(o.ringing.peak(best, last.x, last.y/o.phase), m.exponent)
+	return math.Ldexp(o.ringing.peak(m.best[0], last.x, last.y/o.phase), m.exponent)
 }

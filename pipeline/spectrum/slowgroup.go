@@ -16,7 +16,8 @@ import (
 type slowGroup struct {
 	members []slow
 	eq      *kernel.Slow
-	screen  *kernel.StepScreen // all but Best
+	screen  *kernel.StepScreen // all but Best, per unit of the ground acceleration
+	factors []kernel.Row       // of series, as for kernel.Turn
 	stride  *kernel.Stride     // nil for steps
 	level   int                // of strides
 }
@@ -33,6 +34,7 @@ func newSlowGroups(list []slow) []slowGroup {
 			g.eq.Middle[l], g.eq.Oldest[l] = q.middle, q.oldest
 		}
 		g.screenSteps()
+		g.factors = factorsOf(g.members)
 		groups, list = append(groups, g), list[n:]
 	}
 	return groups
@@ -131,45 +133,36 @@ func (g *slowGroup) restart(m *motion, b int, flags uint32) {
 	m.start.X, m.start.Y = kernel.Row{}, kernel.Row{}
 	for left := flags & g.live(); left != 0; left &= left - 1 {
 		l := bits.TrailingZeros32(left)
-		o := &g.members[l]
-		u := mark.X[l]
-		change := o.change(u, mark.Y[l], a, next)
-		m.start.X[l], m.start.Y[l] = (u+change)/o.eq.scale, change/o.eq.scale
+		m.start.X[l], m.start.Y[l] = g.members[l].restart(mark.X[l], mark.Y[l], a, next)
 	}
 }
 
-// sampled sets best to the greatest |u| at samples, and flags the blocks that
-// have it.
+// restart returns the state of the difference equation after a step from
+// displacement u and velocity v, under ground acceleration a and next.
+func (o *slow) restart(u, v, a, next float64) (x, y float64) {
+	change := o.change(u, v, a, next)
+	return (u + change) / o.eq.scale, change / o.eq.scale
+}
+
+// sampled sets best to the greatest |u| at samples.
 func (g *slowGroup) sampled(m *motion) {
-	m.flagTops(m.flags)
-	*m.screen = kernel.Screen{}
-	for l := range m.best {
-		m.best[l] = 0
-	}
+	m.findTops()
 	for l := range g.members {
 		m.best[l] = float64(g.unit(l) * m.top[l])
 	}
 }
 
-// refine raises best to the greatest |u| of the steps, beginning with the blocks
-// of the greatest sample, which usually settle the others.
+// refine raises best to the greatest |u| of the steps, beginning with the block
+// of each lane's greatest sample, which usually settles the others.
 func (g *slowGroup) refine(m *motion) {
-	*m.stepScreen = *g.screen
-	live := g.live()
+	clear(m.done)
 	for l := range g.members {
-		o := &g.members[l]
-		if g.stride != nil {
-			break // the first step is one of block 0
-		}
-		first := float64(math.Abs(o.eq.scale) * math.Abs(m.marks[0].X[l]))
-		if o.bound(first, math.Abs(m.a[0]), math.Abs(m.a[1])) > m.best[l] {
-			m.best[l], _, _ = o.series.peak(m.best[l], 0, 0, m.a[0], m.a[1]-m.a[0])
-		}
+		b := g.topBlock(m, l)
+		m.done[b] |= 1 << l
+		g.add(m, l, b)
 	}
-	for b := range m.flags {
-		m.done[b] = m.flags[b] & live
-		g.enter(m, b, m.done[b], true)
-	}
+	g.visit(m, true)
+	*m.screen = kernel.Screen{}
 	g.limit(m)
 	lines := m.blockLines
 	if g.stride != nil {
@@ -177,8 +170,24 @@ func (g *slowGroup) refine(m *motion) {
 	}
 	kernel.ScreenPeaks(m.screen, m.marks[:m.blocks()], lines, m.flags)
 	for b, flags := range m.flags {
-		g.enter(m, b, flags&live&^m.done[b], false)
+		for left := flags & g.live() &^ m.done[b]; left != 0; left &= left - 1 {
+			if g.add(m, bits.TrailingZeros32(left), b); m.visits.n == lanes {
+				g.visit(m, false)
+			}
+		}
 	}
+	g.visit(m, false)
+}
+
+// topBlock returns the block of the greatest sample of a lane. The last sample of
+// a block is the first of the next: if it is the greatest, |u| goes on to grow in
+// the one or the other.
+func (g *slowGroup) topBlock(m *motion, l int) int {
+	b := int(m.at[l])
+	if next := &m.marks[b+1]; b+1 < m.blocks() && next.Peak[l] == m.top[l] && float64(next.X[l]*next.Y[l]) > 0 {
+		return b + 1
+	}
+	return b
 }
 
 // limit sets the screen so that a greatest sampled |u| passes if the bound of
@@ -220,34 +229,6 @@ func curvature(linear, square float64) (force, curve, slope float64) {
 	return share, float64(share * square), float64(share * linear)
 }
 
-// enter marches a block again and looks into the steps that can beat best, for
-// the lanes flagged.
-func (g *slowGroup) enter(m *motion, b int, flags uint32, first bool) {
-	if flags == 0 {
-		return
-	}
-	from, to := g.samples(m, b)
-	a := m.a[from : to+1]
-	rows, stepFlags := m.rows[:len(a)], m.stepFlags[:len(a)-1]
-	g.trace(m, b, from, rows, flags)
-	clear(m.seen)
-	if first {
-		g.enterTop(m, rows, a, flags)
-	}
-	for left := flags; left != 0; left &= left - 1 {
-		l := bits.TrailingZeros32(left)
-		m.stepScreen.Best[l] = m.best[l] / math.Abs(g.members[l].eq.scale)
-	}
-	kernel.ScreenSteps(m.stepScreen, rows, m.stepLines[from:to], stepFlags, flags)
-	for k := range stepFlags {
-		for left := stepFlags[k] &^ m.seen[k]; left != 0; left &= left - 1 {
-			l := bits.TrailingZeros32(left)
-			o := &g.members[l]
-			m.best[l] = o.between(m.best[l], rows, l, k, a)
-		}
-	}
-}
-
 // samples returns the first and the last sample of a block of which a trace gives
 // u: a march of steps begins at sample 1.
 func (g *slowGroup) samples(m *motion, b int) (from, to int) {
@@ -273,37 +254,4 @@ func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row, flags uint3
 	}
 	rows[1] = m.start.X
 	kernel.TraceSlow(g.eq, m.start, m.a[from:from+len(rows)], rows[2:], flags)
-}
-
-// enterTop looks into the steps on both sides of the greatest sample, which
-// raises best before the others are compared with it.
-func (g *slowGroup) enterTop(m *motion, rows []kernel.Row, a []float64, flags uint32) {
-	for left := flags; left != 0; left &= left - 1 {
-		l := bits.TrailingZeros32(left)
-		m.tops.Limit[l] = float64(m.top[l] * (g.unit(l) / math.Abs(g.members[l].eq.scale)) * (1 - 0x1p-40))
-	}
-	rowFlags := m.rowFlags[:len(rows)]
-	kernel.ScreenRows(m.tops, rows, m.none[:len(rows)], rowFlags)
-	var at [lanes]int
-	for k, set := range rowFlags {
-		for set &= flags; set != 0; set &= set - 1 {
-			l := bits.TrailingZeros32(set)
-			if u := math.Abs(rows[k][l]); u > m.tops.Limit[l] {
-				at[l], m.tops.Limit[l] = k, u
-			}
-		}
-	}
-	for ; flags != 0; flags &= flags - 1 {
-		l := bits.TrailingZeros32(flags)
-		for k := max(at[l]-1, 0); k <= at[l] && k < len(rows)-1; k++ {
-			m.seen[k] |= 1 << l
-			m.best[l] = g.members[l].between(m.best[l], rows, l, k, a)
-		}
-	}
-}
-
-// between is step for step k of the rows of lane l. Row k is u at sample k of a.
-func (o *slow) between(best float64, rows []kernel.Row, l, k int, a []float64) float64 {
-	u, end := float64(o.eq.scale*rows[k][l]), float64(o.eq.scale*rows[k+1][l])
-	return o.step(best, u, end, a[k], a[k+1])
 }

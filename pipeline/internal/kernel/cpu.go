@@ -21,7 +21,10 @@ type level struct {
 	screenSteps   func(s *StepScreen, rows *Row, lines *Line, flags *uint32, n int, want uint32)
 	marchStride   func(q *Stride, from, to *Mark, inputs *Input, steps int)
 	mix           func(inputs, shares *Input, ground *float64, stride, n int)
-	greatest      func(top *Row, values *float64, stride, n int)
+	greatest      func(top, at *Row, values *float64, stride, n int)
+	traceEach     func(q *Slow, from *Mark, ground *Row, steps int, rows *Row)
+	gather        func(rows *Row, a *float64, from *[Lanes]int, n int)
+	turn          func(t *Turning, factors *Row, terms int)
 	widen         func(o *Outline, c *Compass, points *Point, n int)
 	above         func(o *Outline, x float64, set *Above)
 	screenOrbits  func(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32)
@@ -43,6 +46,9 @@ var portable = level{
 	screenSquares: screenSquaresGeneric,
 	screenSteps:   screenStepsGeneric,
 	greatest:      greatestGeneric,
+	traceEach:     traceEachGeneric,
+	gather:        gatherGeneric,
+	turn:          turnGeneric,
 	marchStride:   marchStrideGeneric,
 	mix:           mixGeneric,
 	widen:         widenGeneric,

@@ -62,6 +62,29 @@ func traceSlowGeneric(q *Slow, from *Mark, ground *float64, steps int, rows *Row
 	}
 }
 
+func traceEachGeneric(q *Slow, from *Mark, ground *Row, steps int, rows *Row) {
+	a, list := unsafe.Slice(ground, steps+2), unsafe.Slice(rows, steps)
+	for l := range Lanes {
+		d, s, m, o := q.Decay[l], -q.Stiffness[l], q.Middle[l], q.Oldest[l]
+		u, w := from.X[l], from.Y[l]
+		for i := range list {
+			w = math.FMA(s, u, math.FMA(w, d, math.FMA(o, a[i][l], math.FMA(m, a[i+1][l], a[i+2][l]))))
+			u += w
+			list[i][l] = u
+		}
+	}
+}
+
+func gatherGeneric(rows *Row, a *float64, from *[Lanes]int, n int) {
+	list := unsafe.Slice(rows, n)
+	for l, first := range from {
+		column := unsafe.Slice((*float64)(unsafe.Add(unsafe.Pointer(a), first*8)), n)
+		for i, x := range column {
+			list[i][l] = x
+		}
+	}
+}
+
 func marchFastGeneric(q *Fast, from, to *Mark, bend *float64, steps int) {
 	b := unsafe.Slice(bend, steps)
 	for l := 0; l < Lanes; l += side {
@@ -168,17 +191,17 @@ func screenStepsGeneric(s *StepScreen, rows *Row, lines *Line, flags *uint32, n 
 	}
 }
 
-func greatestGeneric(top *Row, values *float64, stride, n int) {
-	var sum Row
+func greatestGeneric(top, at *Row, values *float64, stride, n int) {
+	var sum, first Row
 	for i := range n {
 		row := (*Row)(unsafe.Add(unsafe.Pointer(values), i*stride))
-		for l, x := range row {
-			if x > sum[l] {
-				sum[l] = x
+		for l := range row {
+			if x := math.Abs(row[l]); x > sum[l] {
+				sum[l], first[l] = x, float64(i)
 			}
 		}
 	}
-	*top = sum
+	*top, *at = sum, first
 }
 
 func marchStrideGeneric(q *Stride, from, to *Mark, inputs *Input, steps int) {

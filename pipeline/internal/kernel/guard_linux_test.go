@@ -86,18 +86,27 @@ func (c *testCase) runPlaced(p *placing) *placed {
 	inputs := place[Input](p, strides)
 	Mix(inputs, copied(p, c.shares), ground[:strides*(len(c.shares)-1)+1])
 	MarchStride(stride, from[2], to[2], inputs)
-	flags := [][]uint32{place[uint32](p, steps), place[uint32](p, n), place[uint32](p, n), place[uint32](p, max(steps-1, 0))}
-	ScreenRows(screen, rows, copied(p, lines[:steps]), flags[0])
-	ScreenPeaks(screen, marks, lines, flags[1])
-	ScreenSquares(screen, marks, lines, flags[2])
+	flags := [][]uint32{place[uint32](p, n), place[uint32](p, n), place[uint32](p, max(steps-1, 0))}
+	ScreenPeaks(screen, marks, lines, flags[0])
+	ScreenSquares(screen, marks, lines, flags[1])
 	if steps > 0 {
-		ScreenSteps(stepScreen, rows, copied(p, lines[:steps-1]), flags[3], c.want)
+		ScreenSteps(stepScreen, rows, copied(p, lines[:steps-1]), flags[2], c.want)
 	}
-	top := one(p, Row{})
-	GreatestPeaks(top, marks)
+	top, visit := one(p, Row{}), newVisit(c).placed(p)
+	GreatestPeaks(top, visit.at, marks)
 	return &placed{
 		marks: append(marks, *from[0], *from[1], *from[2], *to[0], *to[1], *to[2]),
-		rows:  append(rows, *top), inputs: inputs, flags: flags,
+		rows:  append(append(rows, *top, *visit.at), visit.run(ground)...), inputs: inputs, flags: flags,
+	}
+}
+
+// placed returns a copy with everything placed.
+func (v *visit) placed(p *placing) *visit {
+	return &visit{
+		slow: one(p, *v.slow), start: one(p, *v.start), from: one(p, *v.from),
+		ground: copied(p, v.ground), each: copied(p, v.each),
+		at: one(p, Row{}), rowTop: one(p, Row{}), rowAt: one(p, Row{}),
+		turn: one(p, *v.turn), factors: copied(p, v.factors),
 	}
 }
 

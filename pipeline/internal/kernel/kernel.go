@@ -103,6 +103,36 @@ func TraceSlow(q *Slow, from *Mark, a []float64, rows []Row, want uint32) {
 	}
 }
 
+// TraceEach is TraceSlow with a ground of its own for each lane, and for all
+// lanes.
+func TraceEach(q *Slow, from *Mark, ground, rows []Row) {
+	if len(rows) != max(len(ground)-2, 0) {
+		panic("kernel: number of rows is not the number of steps")
+	}
+	if len(rows) > 0 {
+		current.traceEach(q, from, &ground[0], len(rows), &rows[0])
+	}
+}
+
+// GatherUnit is what the number of rows of Gather is a multiple of.
+const GatherUnit = 8
+
+// Gather sets lane l of rows[i] to a[from[l]+i]. It panics if the number of rows
+// is no multiple of GatherUnit, or a does not have all of these.
+func Gather(rows []Row, a []float64, from *[Lanes]int) {
+	if len(rows)%GatherUnit != 0 {
+		panic("kernel: number of rows is not one of whole units")
+	}
+	for _, first := range from {
+		if first < 0 || first+len(rows) > len(a) {
+			panic("kernel: rows reach beyond what is gathered")
+		}
+	}
+	if len(rows) > 0 {
+		current.gather(&rows[0], &a[0], from, len(rows))
+	}
+}
+
 // MarchFast takes oscillators from the state from.X, from.Y through steps with
 // the numbers bend, sets to.X and to.Y to the state after the last and from.Peak
 // to the greatest y² + z² at their starts, 0 for no steps. to may be from.
@@ -130,16 +160,9 @@ func TraceFast(q *Fast, from *Mark, bend []float64, rows []Mark, want uint32) {
 	}
 }
 
-// ScreenRows sets bit l of flags[i] where |rows[i][l]| exceeds the limit of lane
-// l at lines[i], and clears it elsewhere. It panics if lengths differ.
-func ScreenRows(s *Screen, rows []Row, lines []Line, flags []uint32) {
-	checkLines(len(rows), len(lines), len(flags))
-	if len(rows) > 0 {
-		current.screen(s, &rows[0][0], rowBytes, &lines[0], &flags[0], len(rows))
-	}
-}
-
-// ScreenPeaks is ScreenRows for the peaks of marks.
+// ScreenPeaks sets bit l of flags[i] where the peak of lane l of marks[i] exceeds
+// the lane's limit at lines[i], and clears it elsewhere. It panics if lengths
+// differ.
 func ScreenPeaks(s *Screen, marks []Mark, lines []Line, flags []uint32) {
 	checkLines(len(marks), len(lines), len(flags))
 	if len(marks) > 0 {
@@ -180,14 +203,23 @@ func ScreenSteps(s *StepScreen, rows []Row, lines []Line, flags []uint32, want u
 	}
 }
 
-// GreatestPeaks sets top to the greatest peak of each lane, 0 for no marks.
-// Peaks are not negative; of NaN the result is unspecified.
-func GreatestPeaks(top *Row, marks []Mark) {
+// GreatestPeaks sets top to the greatest peak of each lane and at to the number
+// of the first mark that has it, both 0 for no marks. Peaks are not negative.
+func GreatestPeaks(top, at *Row, marks []Mark) {
 	if len(marks) == 0 {
-		*top = Row{}
+		*top, *at = Row{}, Row{}
 		return
 	}
-	current.greatest(top, &marks[0].Peak[0], markBytes, len(marks))
+	current.greatest(top, at, &marks[0].Peak[0], markBytes, len(marks))
+}
+
+// GreatestRows is GreatestPeaks for the magnitudes of rows.
+func GreatestRows(top, at *Row, rows []Row) {
+	if len(rows) == 0 {
+		*top, *at = Row{}, Row{}
+		return
+	}
+	current.greatest(top, at, &rows[0][0], rowBytes, len(rows))
 }
 
 const (

@@ -52,7 +52,22 @@ func mixAVX2(inputs *float64, shares *float64, ground *float64, stride int, n in
 // greatestAVX2 is greatestGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func greatestAVX2(top *float64, values *float64, stride int, n int)
+func greatestAVX2(top *float64, at *float64, values *float64, stride int, n int)
+
+// traceEachAVX2 is traceEachGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func traceEachAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64)
+
+// gatherAVX2 is gatherGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func gatherAVX2(rows *float64, a *float64, from *int, n int)
+
+// turnAVX2 is turnGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func turnAVX2(t *float64, factors *float64, terms int)
 
 // widenAVX2 is widenGeneric for vectors of 4 lanes.
 //
@@ -147,7 +162,22 @@ func mixAVX512(inputs *float64, shares *float64, ground *float64, stride int, n 
 // greatestAVX512 is greatestGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func greatestAVX512(top *float64, values *float64, stride int, n int)
+func greatestAVX512(top *float64, at *float64, values *float64, stride int, n int)
+
+// traceEachAVX512 is traceEachGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func traceEachAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64)
+
+// gatherAVX512 is gatherGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func gatherAVX512(rows *float64, a *float64, from *int, n int)
+
+// turnAVX512 is turnGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func turnAVX512(t *float64, factors *float64, terms int)
 
 // widenAVX512 is widenGeneric for vectors of 8 lanes.
 //

@@ -33,6 +33,7 @@ type testCase struct {
 	want   uint32 // lanes of ScreenSteps
 	stride Stride
 	shares []Input
+	turn   Turning
 	ground []float64
 }
 
@@ -63,6 +64,11 @@ func newCase(seed uint64, n int) *testCase {
 		for k := range c.stride.Weights {
 			c.stride.Weights[k].U[l], c.stride.Weights[k].V[l] = r.NormFloat64(), r.NormFloat64()
 		}
+	}
+	for l := range Lanes {
+		c.turn.U[l], c.turn.V[l] = r.NormFloat64(), r.NormFloat64()
+		c.turn.Force[l], c.turn.Rise[l] = r.NormFloat64(), r.NormFloat64()
+		c.turn.Linear[l], c.turn.Square[l] = r.NormFloat64(), r.Float64()
 	}
 	c.shares = make([]Input, 2+seed%5)
 	for j := range c.shares {
@@ -101,6 +107,7 @@ type outcome struct {
 	marks                        []Mark
 	flags                        []uint32
 	top                          Row
+	visit                        []Row // what is made of lanes with a ground of their own
 }
 
 func (c *testCase) run() *outcome {
@@ -109,7 +116,7 @@ func (c *testCase) run() *outcome {
 	// Guards round what the kernels write.
 	rows, marks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
 	some, someMarks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
-	lines, flags := make([]Line, len(c.ground)), make([]uint32, 2*len(c.ground)+steps+2)
+	lines, flags := make([]Line, len(c.ground)), make([]uint32, 2*len(c.ground)+2)
 	for i := range flags {
 		flags[i] = 0xdeadbeef
 	}
@@ -124,10 +131,11 @@ func (c *testCase) run() *outcome {
 	TraceFast(&c.fast, &c.start, c.ground, someMarks[1:len(c.ground)+1], c.want)
 	o.few = keep(some, someMarks, c.want)
 	inner, n := marks[1:len(c.ground)+1], len(c.ground)
-	ScreenRows(&c.screen, rows[1:steps+1], lines[:steps], flags[1:1+steps])
-	ScreenPeaks(&c.screen, inner, lines, flags[1+steps:1+steps+n])
-	ScreenSquares(&c.screen, inner, lines, flags[1+steps+n:1+steps+2*n])
-	GreatestPeaks(&o.top, inner)
+	ScreenPeaks(&c.screen, inner, lines, flags[1:1+n])
+	ScreenSquares(&c.screen, inner, lines, flags[1+n:1+2*n])
+	visit := newVisit(c)
+	GreatestPeaks(&o.top, visit.at, inner)
+	o.visit = append(visit.run(c.ground), *visit.at)
 	steps = max(steps-1, 0)
 	stepFlags := make([]uint32, steps+1)
 	stepFlags[steps] = 0xdeadbeef
@@ -209,6 +217,9 @@ func (o *outcome) compare(t *testing.T, label string, want *outcome) {
 		check("slow peak", &o.slow.Peak, &want.slow.Peak)
 		check("fast peak", &o.fast.Peak, &want.fast.Peak)
 		check("greatest peak", &o.top, &want.top)
+	}
+	for i := range want.visit { // last, because time and correction need not be finite
+		check(fmt.Sprintf("visit %d", i), &o.visit[i], &want.visit[i])
 	}
 	for i := range want.flags {
 		if o.flags[i] != want.flags[i] {

@@ -19,6 +19,9 @@ func vectorLevels() []level {
 			screenSquares: screening(screenSquaresAVX512),
 			screenSteps:   stepScreening(screenStepsAVX512),
 			greatest:      maximum(greatestAVX512),
+			traceEach:     eachTrace(traceEachAVX512),
+			gather:        gathering(gatherAVX512),
+			turn:          turning(turnAVX512),
 			marchStride:   strideMarch(marchStrideAVX512),
 			mix:           mixing(mixAVX512),
 			widen:         widening(widenAVX512),
@@ -43,6 +46,9 @@ func vectorLevels() []level {
 			screenSquares: screening(screenSquaresAVX2),
 			screenSteps:   stepScreening(screenStepsAVX2),
 			greatest:      maximum(greatestAVX2),
+			traceEach:     eachTrace(traceEachAVX2),
+			gather:        gathering(gatherAVX2),
+			turn:          turning(turnAVX2),
 			marchStride:   strideMarch(marchStrideAVX2),
 			mix:           mixing(mixAVX2),
 			widen:         widening(widenAVX2),
@@ -96,8 +102,22 @@ func screening(f func(s, values *float64, stride int, lines *float64, flags *uin
 	}
 }
 
-func maximum(f func(top, values *float64, stride, n int)) func(*Row, *float64, int, int) {
-	return func(top *Row, values *float64, stride, n int) { f(&top[0], values, stride, n) }
+func maximum(f func(top, at, values *float64, stride, n int)) func(*Row, *Row, *float64, int, int) {
+	return func(top, at *Row, values *float64, stride, n int) { f(&top[0], &at[0], values, stride, n) }
+}
+
+func eachTrace(f func(q, from, ground *float64, steps int, rows *float64)) func(*Slow, *Mark, *Row, int, *Row) {
+	return func(q *Slow, from *Mark, ground *Row, steps int, rows *Row) {
+		f(&q.Decay[0], &from.X[0], &ground[0], steps, &rows[0])
+	}
+}
+
+func gathering(f func(rows, a *float64, from *int, n int)) func(*Row, *float64, *[Lanes]int, int) {
+	return func(rows *Row, a *float64, from *[Lanes]int, n int) { f(&rows[0], a, &from[0], n) }
+}
+
+func turning(f func(t, factors *float64, terms int)) func(*Turning, *Row, int) {
+	return func(t *Turning, factors *Row, terms int) { f(&t.U[0], &factors[0], terms) }
 }
 
 func stepScreening(f func(s, rows, lines *float64, flags *uint32, n int, want uint32)) func(*StepScreen, *Row, *Line, *uint32, int, uint32) {

@@ -10,6 +10,7 @@ package main
 
 import (
 	"fmt"
+	"math"
 
 	. "github.com/mmcloughlin/avo/build"
 	"github.com/mmcloughlin/avo/operand"
@@ -48,6 +49,9 @@ func main() {
 		l.marchStride()
 		l.mix()
 		l.greatest()
+		l.traceEach()
+		l.gather()
+		l.turn()
 		l.widen()
 		l.above()
 		l.exceeds()
@@ -104,6 +108,15 @@ func (l level) zero(x reg.VecVirtual) {
 	} else {
 		VPXOR(x, x, x)
 	}
+}
+
+// constant returns a register that holds x in every lane.
+func (l level) constant(x float64) reg.VecVirtual {
+	word, low, wide := GP64(), XMM(), l.vector()
+	MOVQ(operand.U64(math.Float64bits(x)), word)
+	VMOVQ(word, low)
+	VBROADCASTSD(low, wide)
+	return wide
 }
 
 // passes repeats body for as many lanes as are in flight, with the byte offset

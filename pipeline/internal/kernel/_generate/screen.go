@@ -53,35 +53,65 @@ func (l level) screen(squared bool) {
 	RET()
 }
 
-// greatest takes the maximum of rows that are stride bytes apart.
+// greatest takes the maximum of the magnitudes of rows that are stride bytes
+// apart, and the number of the first row that has it.
 func (l level) greatest() {
-	TEXT("greatest"+l.name, NOSPLIT, "func(top, values *float64, stride, n int)")
+	TEXT("greatest"+l.name, NOSPLIT, "func(top, at, values *float64, stride, n int)")
 	Pragma("noescape")
 	Doc(fmt.Sprintf("greatest%s is greatestGeneric for vectors of %d lanes.", l.name, l.width))
-	top, values := Load(Param("top"), GP64()), Load(Param("values"), GP64())
+	top, at, values := Load(Param("top"), GP64()), Load(Param("at"), GP64()), Load(Param("values"), GP64())
 	stride, n := Load(Param("stride"), GP64()), Load(Param("n"), GP64())
-	sum := make([]reg.VecVirtual, lanes/l.width)
-	for v := range sum {
-		sum[v] = l.vector()
-		l.zero(sum[v])
-	}
-	Label("line")
-	for v := range sum {
-		VMAXPD(l.at(values, 0, 0, v), sum[v], sum[v])
-	}
-	ADDQ(stride, values)
-	DECQ(n)
-	JNZ(operand.LabelRef("line"))
-	for v := range sum {
-		VMOVUPD(sum[v], l.at(top, 0, 0, v))
-	}
+	mask, one := l.absolute(), l.constant(1)
+	l.passes(func(offset, pass int) {
+		from, left := GP64(), GP64()
+		MOVQ(values, from)
+		MOVQ(n, left)
+		sum, first, number := l.some(), l.some(), l.vector()
+		l.zero(number)
+		for v := range sum {
+			l.zero(sum[v])
+			l.zero(first[v])
+		}
+		line := fmt.Sprintf("line%d", pass)
+		Label(line)
+		for v := range sum {
+			x := l.vector()
+			l.and(l.at(from, 0, offset, v), mask, x)
+			l.replace(x, sum[v], number, first[v])
+		}
+		VADDPD(one, number, number)
+		ADDQ(stride, from)
+		DECQ(left)
+		JNZ(operand.LabelRef(line))
+		for v := range sum {
+			VMOVUPD(sum[v], l.at(top, 0, offset, v))
+			VMOVUPD(first[v], l.at(at, 0, offset, v))
+		}
+	})
 	VZEROUPPER()
 	RET()
 }
 
+// replace sets sum to x and first to number where x > sum.
+func (l level) replace(x, sum, number, first reg.VecVirtual) {
+	if l.width == 8 {
+		k := K()
+		VCMPPD(operand.U8(greater), sum, x, k)
+		VMOVAPD(x, k, sum)
+		VMOVAPD(number, k, first)
+		return
+	}
+	above := l.vector()
+	VCMPPD(operand.U8(greater), sum, x, above)
+	VBLENDVPD(above, x, sum, sum)
+	VBLENDVPD(above, number, first, first)
+}
+
+// greater compares ordered, signalling.
+const greater = 14
+
 // compare sets bits to one bit for each lane, whether x > r.
 func (l level) compare(x, r reg.VecVirtual, bits reg.Register) {
-	const greater = 14 // ordered, signalling
 	if l.width == 8 {
 		k := K()
 		VCMPPD(operand.U8(greater), r, x, k)
@@ -104,12 +134,8 @@ func (l level) screenSteps() {
 		in[name] = Load(Param(name), GP64())
 	}
 	want := Load(Param("want"), GP32())
-	mask, zero, half := l.absolute(), l.vector(), l.vector()
+	mask, zero, half := l.absolute(), l.vector(), l.constant(0.5)
 	l.zero(zero)
-	word, x := GP64(), XMM()
-	MOVQ(operand.U64(0x3fe0000000000000), word) // 0.5
-	VMOVQ(word, x)
-	VBROADCASTSD(x, half)
 	for v := range lanes / l.width {
 		next := fmt.Sprintf("skip%d", v)
 		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
