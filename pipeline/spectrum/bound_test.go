@@ -76,7 +76,7 @@ func fastExcess(m *motion, o *fast) (worst float64) {
 		for k := range states {
 			// Every step is followed when best is below its bound.
 			s := state{states[k].X[0], states[k].Y[0]}
-			worst = max(worst, share(o.step(-1, s, states[k].Peak[0], m.a[from+k], m.a[from+k+1]), bound))
+			worst = max(worst, share(o.step(-1, s, m.a[from+k], m.a[from+k+1]), bound))
 		}
 	}
 	return worst

@@ -79,20 +79,20 @@ func (o *fast) velocity(s state, slope float64) float64 {
 }
 
 // step returns the greater of best and the greatest |u| of the step from sample
-// a to next, from the free vibration s with the measure square = y² + z².
+// a to next, from the free vibration s.
 //
 // It looks into the step only if a bound on |u| exceeds best. The straight line
 // is within its ends. y is within its ends too unless z changes sign, and then
-// goes to one side only, up to √square, if the phase is less than π; else to
+// goes to one side only, up to √(y² + z²), if the phase is less than π; else to
 // both. The other bound is that of a slow oscillator's step, with |ü| <= (1 +
-// 2ζ)·φ²·√square in units of y.
-func (o *fast) step(best float64, s state, square, a, next float64) float64 {
+// 2ζ)·φ²·√(y² + z²) in units of y.
+func (o *fast) step(best float64, s state, a, next float64) float64 {
 	slope := next - a
 	shift := float64(o.turn.jump * slope)
 	p, pEnd := shift-float64(o.phase*a), shift-float64(o.phase*next)
 	y := float64(o.turn.yy*s.x) + float64(o.turn.yz*s.y)
 	z := float64(o.turn.zy*s.x) + float64(o.turn.zz*s.y)
-	least, most, size := min(s.x, y), max(s.x, y), math.Sqrt(square)
+	least, most, size := min(s.x, y), max(s.x, y), reach(s.x, s.y)
 	switch {
 	case o.phase >= math.Pi:
 		least, most = -size, size

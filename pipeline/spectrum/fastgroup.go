@@ -1,7 +1,6 @@
 package spectrum
 
 import (
-	"math"
 	"math/bits"
 
 	"swaybook/pipeline/internal/kernel"
@@ -67,24 +66,56 @@ func (g *fastGroup) march(m *motion) {
 	}
 }
 
-// refine sets best to the greatest |u| of the steps, beginning with the blocks
-// of the greatest free vibration, which usually settle the others.
+// fastVisits are those of fast oscillators, whose march starts with a block.
+type fastVisits struct {
+	visits
+	turn   *kernel.Fast
+	phase  *kernel.Row
+	screen *kernel.FastScreen
+	rows   []kernel.Mark // states, and u in units of φ⁻³ in place of peaks
+}
+
+func newFastVisits() *fastVisits {
+	return &fastVisits{
+		visits: newVisits(), turn: new(kernel.Fast), phase: new(kernel.Row),
+		screen: new(kernel.FastScreen), rows: make([]kernel.Mark, blockSteps+1),
+	}
+}
+
+// add has a block of a member visited next.
+func (g *fastGroup) add(m *motion, l, b int) {
+	from, _ := m.block(b)
+	v, q, o := m.fastVisits, g.turn, &g.members[l]
+	i := v.add(l, from)
+	v.turn.YY[i], v.turn.YZ[i] = q.YY[l], q.YZ[l]
+	v.turn.ZY[i], v.turn.ZZ[i], v.turn.Jump[i] = q.ZY[l], q.ZZ[l], q.Jump[l]
+	v.phase[i], v.screen.Phase[i], v.screen.Curve[i] = o.phase, o.phase, o.curve
+	v.start.X[i], v.start.Y[i] = m.marks[b].X[l], m.marks[b].Y[l]
+}
+
+// refine sets best to the greatest |u| of the steps, beginning with the block of
+// each lane's greatest free vibration, which usually settles the others.
 func (g *fastGroup) refine(m *motion) {
-	live := g.live()
-	m.flagTops(m.flags)
-	*m.screen = kernel.Screen{}
-	for l := range m.best {
+	m.findTops()
+	clear(m.done)
+	for l := range g.members {
+		b := int(m.at[l])
 		m.best[l] = 0
+		m.done[b] |= 1 << l
+		g.add(m, l, b)
 	}
-	for b := range m.flags {
-		m.done[b] = m.flags[b] & live
-		g.enter(m, b, m.done[b], true)
-	}
+	g.visit(m)
+	*m.screen = kernel.Screen{}
 	g.limit(m)
 	kernel.ScreenSquares(m.screen, m.marks[:m.blocks()], m.blockLines, m.flags)
 	for b, flags := range m.flags {
-		g.enter(m, b, flags&live&^m.done[b], false)
+		for left := flags & g.live() &^ m.done[b]; left != 0; left &= left - 1 {
+			if g.add(m, bits.TrailingZeros32(left), b); m.fastVisits.n == lanes {
+				g.visit(m)
+			}
+		}
 	}
+	g.visit(m)
 }
 
 // limit sets the screen so that a free vibration passes if with the straight
@@ -97,41 +128,38 @@ func (g *fastGroup) limit(m *motion) {
 	}
 }
 
-// enter marches a block again and looks into the steps that can beat best, for
-// the lanes flagged.
-func (g *fastGroup) enter(m *motion, b int, flags uint32, first bool) {
-	if flags == 0 {
+// visit marches the blocks that were added again and looks into the steps that can
+// beat best.
+func (g *fastGroup) visit(m *motion) {
+	v := m.fastVisits
+	if v.n == 0 {
 		return
 	}
-	from, to := m.block(b)
-	states, stepFlags := m.states[:to-from], m.stepFlags[:to-from]
-	kernel.TraceFast(g.turn, &m.marks[b], m.bend[from:to], states, flags)
-	if first {
-		g.sampled(m, from, states, flags)
-	}
-	g.limit(m)
-	kernel.ScreenSquares(m.screen, states, m.stepLines[from:to], stepFlags)
-	for k := range states {
-		for left := stepFlags[k] & flags; left != 0; left &= left - 1 {
-			l := bits.TrailingZeros32(left)
-			s := state{states[k].X[l], states[k].Y[l]}
-			m.best[l] = g.members[l].step(m.best[l], s, states[k].Peak[l], m.a[from+k], m.a[from+k+1])
+	v.gather(m)
+	kernel.TraceFastEach(v.turn, v.phase, v.start, v.ground[:len(v.rows)+2], v.rows)
+	for i, from := range v.from[:v.n] {
+		last := m.steps() - from
+		for k := last + 1; k < len(v.rows); k++ {
+			v.rows[k].Peak[i] = 0 // beyond the motion
 		}
 	}
-}
-
-// sampled raises best to the greatest |u| at the starts of steps.
-func (g *fastGroup) sampled(m *motion, from int, states []kernel.Mark, flags uint32) {
-	ground := m.a[from : from+len(states)+1]
-	for ; flags != 0; flags &= flags - 1 {
-		l := bits.TrailingZeros32(flags)
+	kernel.GreatestPeaks(v.top, v.at, v.rows)
+	for i, l := range v.member[:v.n] {
 		o := &g.members[l]
-		jump, phase, top := o.turn.jump, o.phase, uint64(0)
-		a := ground[0]
-		for k, next := range ground[1:] {
-			u := states[k].X[l] + (float64(jump*(next-a)) - float64(phase*a))
-			top, a = max(top, magnitude(u)), next
-		}
-		m.best[l] = max(m.best[l], math.Float64frombits(top)/o.cube)
+		m.best[l] = max(m.best[l], v.top[i]/o.cube)
+		v.screen.Limit[i] = float64(m.best[l] * o.cube)
 	}
+	kernel.ScreenFast(v.screen, v.rows, v.ground[:len(v.rows)], m.stepFlags)
+	some := ^uint32(0) >> (lanes - v.n)
+	for k, flags := range m.stepFlags {
+		for left := flags & some; left != 0; left &= left - 1 {
+			i := bits.TrailingZeros32(left)
+			l, sample := v.member[i], v.from[i]+k
+			if sample < m.steps() {
+				s := state{v.rows[k].X[i], v.rows[k].Y[i]}
+				m.best[l] = g.members[l].step(m.best[l], s, m.a[sample], m.a[sample+1])
+			}
+		}
+	}
+	v.n = 0
 }

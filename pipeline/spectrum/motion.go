@@ -33,25 +33,26 @@ type motion struct {
 // allocated by itself, which aligns it to whole vectors: fields in the middle of
 // a struct need not be, and vectors across two cache lines cost twice.
 type search struct {
-	marks     []kernel.Mark // of each block of steps, and the state at the end
-	flags     []uint32      // of each block of steps: the lanes that it may hold the maximum of
-	done      []uint32      // of each block of steps: the lanes that it was searched for
-	rows      []kernel.Row  // slow: u at each sample of a block
-	rowFlags  []uint32      // of each sample of a block: the lanes that can matter there
-	states    []kernel.Mark // fast: the state at the start of each step of a block
-	stepFlags []uint32      // of each step of a block: the lanes that may have the maximum there
-	screen    *kernel.Screen
-	top, at   *kernel.Row  // the greatest peak of each lane and the first block that has it
-	start     *kernel.Mark // the state that a block of strides is marched again from
-	visits    *visits
-	best      [lanes]float64
+	marks      []kernel.Mark // of each block of steps, and the state at the end
+	flags      []uint32      // of each block of steps: the lanes that it may hold the maximum of
+	done       []uint32      // of each block of steps: the lanes that it was searched for
+	rows       []kernel.Row  // slow: u at each sample of a block
+	rowFlags   []uint32      // of each sample of a block: the lanes that can matter there
+	states     []kernel.Mark // fast: the state at the start of each step of a block
+	stepFlags  []uint32      // of each step of a block: the lanes that may have the maximum there
+	screen     *kernel.Screen
+	top, at    *kernel.Row  // the greatest peak of each lane and the first block that has it
+	start      *kernel.Mark // the state that a block of strides is marched again from
+	slowVisits *slowVisits
+	fastVisits *fastVisits
+	best       [lanes]float64
 }
 
 func newMotion() *motion {
 	return &motion{search: search{
 		rows: make([]kernel.Row, blockSteps+1), rowFlags: make([]uint32, blockSteps+1),
 		states: make([]kernel.Mark, blockSteps), stepFlags: make([]uint32, blockSteps), screen: new(kernel.Screen),
-		top: new(kernel.Row), at: new(kernel.Row), start: new(kernel.Mark), visits: newVisits(),
+		top: new(kernel.Row), at: new(kernel.Row), start: new(kernel.Mark), slowVisits: newSlowVisits(), fastVisits: newFastVisits(),
 	}}
 }
 

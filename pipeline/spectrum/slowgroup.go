@@ -171,7 +171,7 @@ func (g *slowGroup) refine(m *motion) {
 	kernel.ScreenPeaks(m.screen, m.marks[:m.blocks()], lines, m.flags)
 	for b, flags := range m.flags {
 		for left := flags & g.live() &^ m.done[b]; left != 0; left &= left - 1 {
-			if g.add(m, bits.TrailingZeros32(left), b); m.visits.n == lanes {
+			if g.add(m, bits.TrailingZeros32(left), b); m.slowVisits.n == lanes {
 				g.visit(m, false)
 			}
 		}

@@ -7,32 +7,57 @@ import (
 	"swaybook/pipeline/internal/kernel"
 )
 
-// visits are blocks of a group of slow oscillators that are marched again side by
-// side, with every step kept. Each takes a lane, so that lanes may hold different
-// blocks, and the same member more than once.
+// visits are blocks of a group of oscillators that are marched again side by side,
+// with every step kept. Each takes a lane, so that lanes may hold different blocks,
+// and the same member more than once.
 type visits struct {
-	n        int
-	member   [lanes]int
-	from     [lanes]int // the first sample
+	n      int
+	member [lanes]int
+	from   [lanes]int   // the first sample
+	start  *kernel.Mark // the state that the march starts from
+	ground []kernel.Row // of each lane
+	top    *kernel.Row  // the greatest |u| at samples
+	at     *kernel.Row  // the row that has it
+}
+
+// gatheredRows is the number of samples of a block and the next two, made up to
+// whole units.
+const gatheredRows = (blockSteps + 2 + kernel.GatherUnit - 1) / kernel.GatherUnit * kernel.GatherUnit
+
+func newVisits() visits {
+	return visits{start: new(kernel.Mark), ground: make([]kernel.Row, gatheredRows), top: new(kernel.Row), at: new(kernel.Row)}
+}
+
+// add takes a lane for a member and returns it.
+func (v *visits) add(member, from int) int {
+	i := v.n
+	v.n++
+	v.member[i], v.from[i] = member, from
+	return i
+}
+
+// gather sets the ground of all lanes.
+func (v *visits) gather(m *motion) {
+	clear(v.from[v.n:])
+	kernel.Gather(v.ground, m.padded, &v.from)
+}
+
+// slowVisits are those of slow oscillators, whose march starts at the second sample
+// of a block.
+type slowVisits struct {
+	visits
 	eq       *kernel.Slow
-	start    *kernel.Mark // the state at the second sample
-	ground   []kernel.Row // of each lane
 	screen   *kernel.StepScreen
 	lines    []kernel.Line // what screens steps: ones
-	top, at  *kernel.Row   // the greatest |u| at samples, and where
 	turning  *kernel.Turning
 	turnStep [lanes]int // the step that a turning point is sought in; it can be beside the block
 	seen     []uint32   // of each step: the lanes that it is done with
 }
 
-// gatheredRows is the number of samples of a block, made up to whole units.
-const gatheredRows = (blockSteps + kernel.GatherUnit) / kernel.GatherUnit * kernel.GatherUnit
-
-func newVisits() *visits {
-	v := &visits{
-		eq: new(kernel.Slow), start: new(kernel.Mark), ground: make([]kernel.Row, gatheredRows),
-		screen: new(kernel.StepScreen), lines: make([]kernel.Line, blockSteps),
-		top: new(kernel.Row), at: new(kernel.Row), turning: new(kernel.Turning), seen: make([]uint32, blockSteps),
+func newSlowVisits() *slowVisits {
+	v := &slowVisits{
+		visits: newVisits(), eq: new(kernel.Slow), screen: new(kernel.StepScreen), lines: make([]kernel.Line, blockSteps),
+		turning: new(kernel.Turning), seen: make([]uint32, blockSteps),
 	}
 	for i := range v.lines {
 		v.lines[i].First = 1
@@ -42,11 +67,9 @@ func newVisits() *visits {
 
 // add has a block of a member visited next.
 func (g *slowGroup) add(m *motion, l, b int) {
-	v := m.visits
-	i, q := v.n, g.eq
 	from, _ := m.block(b)
-	v.n++
-	v.member[i], v.from[i] = l, from
+	v, q := m.slowVisits, g.eq
+	i := v.add(l, from)
 	v.eq.Decay[i], v.eq.Stiffness[i] = q.Decay[l], q.Stiffness[l]
 	v.eq.Middle[i], v.eq.Oldest[i] = q.Middle[l], q.Oldest[l]
 	v.screen.Force[i] = float64(g.screen.Force[l] * m.blockLines[b].First)
@@ -76,7 +99,7 @@ func (g *slowGroup) secondSample(m *motion, l, b int) (first, x, y float64) {
 // beat best: first into that beside the greatest sample, if they are those of the
 // members' greatest samples in order.
 func (g *slowGroup) visit(m *motion, first bool) {
-	v := m.visits
+	v := m.slowVisits
 	if v.n == 0 {
 		return
 	}
@@ -106,9 +129,8 @@ func (g *slowGroup) visit(m *motion, first bool) {
 // traceVisits sets rows to u at the samples of the blocks. Beyond the last sample
 // of the motion u stays what it is there.
 func (g *slowGroup) traceVisits(m *motion, rows []kernel.Row) {
-	v := m.visits
-	clear(v.from[v.n:])
-	kernel.Gather(v.ground, m.padded, &v.from)
+	v := m.slowVisits
+	v.gather(m)
 	rows[1] = v.start.X
 	kernel.TraceEach(v.eq, v.start, v.ground[:len(rows)], rows[2:])
 	for i, from := range v.from[:v.n] {
@@ -127,7 +149,7 @@ func (o *slow) between(best, x, end, a, next float64) float64 {
 // turn raises best to the turning point beside each lane's greatest sample, if one
 // is found, and marks the step that has it.
 func (g *slowGroup) turn(m *motion, rows []kernel.Row) {
-	v := m.visits
+	v := m.slowVisits
 	for i := range v.n {
 		g.aim(m, rows, i)
 	}
@@ -147,7 +169,7 @@ func (g *slowGroup) turn(m *motion, rows []kernel.Row) {
 // |u| falls off from there, to the step before it, back in time, which turns the
 // signs of velocity and damping.
 func (g *slowGroup) aim(m *motion, rows []kernel.Row, i int) {
-	v, o := m.visits, &g.members[m.visits.member[i]]
+	v, o := m.slowVisits, &g.members[m.slowVisits.member[i]]
 	t, k := v.turning, int(v.at[i])
 	sample := v.from[i] + k
 	u, velocity := o.motionAt(rows, i, k, m.a, sample)
@@ -180,7 +202,7 @@ func (o *slow) motionAt(rows []kernel.Row, i, k int, a []float64, sample int) (u
 // hasTurned reports whether lane i has come to the one turning point of its step.
 // There is one if the velocity has opposite signs at both ends, and no other if ü
 // has the same sign there (see peak); of the last correction see turnTolerance.
-func (v *visits) hasTurned(i int) bool {
+func (v *slowVisits) hasTurned(i int) bool {
 	t := v.turning
 	return math.Abs(t.Move[i]) <= turnTolerance && t.Time[i] >= 0 && t.Time[i] <= 1 &&
 		opposite(t.V[i], t.Velocity[i]) && float64(t.C[2][i]*t.Bend[i]) > 0

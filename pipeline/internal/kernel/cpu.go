@@ -23,6 +23,8 @@ type level struct {
 	mix           func(inputs, shares *Input, ground *float64, stride, n int)
 	greatest      func(top, at *Row, values *float64, stride, n int)
 	traceEach     func(q *Slow, from *Mark, ground *Row, steps int, rows *Row)
+	traceFastEach func(q *Fast, phase *Row, from *Mark, ground *Row, steps int, rows *Mark)
+	screenFast    func(s *FastScreen, rows *Mark, ground *Row, flags *uint32, n int)
 	gather        func(rows *Row, a *float64, from *[Lanes]int, n int)
 	turn          func(t *Turning, factors *Row, terms int)
 	widen         func(o *Outline, c *Compass, points *Point, n int)
@@ -47,6 +49,8 @@ var portable = level{
 	screenSteps:   screenStepsGeneric,
 	greatest:      greatestGeneric,
 	traceEach:     traceEachGeneric,
+	traceFastEach: traceFastEachGeneric,
+	screenFast:    screenFastGeneric,
 	gather:        gatherGeneric,
 	turn:          turnGeneric,
 	marchStride:   marchStrideGeneric,

@@ -75,6 +75,22 @@ func traceEachGeneric(q *Slow, from *Mark, ground *Row, steps int, rows *Row) {
 	}
 }
 
+func traceFastEachGeneric(q *Fast, phase *Row, from *Mark, ground *Row, steps int, rows *Mark) {
+	a, list := unsafe.Slice(ground, steps+2), unsafe.Slice(rows, steps)
+	for l := range Lanes {
+		yy, yz, zy, zz, jump := q.YY[l], q.YZ[l], q.ZY[l], q.ZZ[l], q.Jump[l]
+		y, z, slope := from.X[l], from.Y[l], a[1][l]-a[0][l]
+		for i := range list {
+			list[i].X[l], list[i].Y[l] = y, z
+			list[i].Peak[l] = math.FMA(-phase[l], a[i][l], math.FMA(jump, slope, y))
+			next := a[i+2][l] - a[i+1][l]
+			b := next - slope
+			y, z = math.FMA(y, yy, math.FMA(yz, z, -float64(jump*b))), math.FMA(zy, y, math.FMA(zz, z, b))
+			slope = next
+		}
+	}
+}
+
 func gatherGeneric(rows *Row, a *float64, from *[Lanes]int, n int) {
 	list := unsafe.Slice(rows, n)
 	for l, first := range from {
@@ -189,6 +205,50 @@ func screenStepsGeneric(s *StepScreen, rows *Row, lines *Line, flags *uint32, n 
 			}
 		}
 	}
+}
+
+// diagonal is √2 − 1, rounded up.
+const diagonal = 0.4142135623730951
+
+func screenFastGeneric(s *FastScreen, rows *Mark, ground *Row, flags *uint32, n int) {
+	list, a, out := unsafe.Slice(rows, n+1), unsafe.Slice(ground, n+1), unsafe.Slice(flags, n)
+	for i := range out {
+		sum := uint32(0)
+		for l := range Lanes {
+			x, end, limit := list[i].Peak[l], list[i+1].Peak[l], s.Limit[l]
+			y, z := math.Abs(list[i].X[l]), math.Abs(list[i].Y[l])
+			size := math.FMA(diagonal, lesser(y, z), greater(y, z))
+			line := x - list[i].X[l]
+			last := math.FMA(-s.Phase[l], a[i+1][l]-a[i][l], line)
+			if !(greater(math.Abs(line), math.Abs(last))+size > limit) {
+				continue
+			}
+			m := float64(s.Curve[l] * size)
+			spare := math.FMA(0.5, m, -math.Abs(end-x))
+			if !(spare > 0) {
+				spare = 0
+			}
+			if float64(spare*spare) > float64((m+m)*(limit-greater(math.Abs(x), math.Abs(end)))) {
+				sum |= 1 << l
+			}
+		}
+		out[i] = sum
+	}
+}
+
+// greater and lesser return y unless x is the one.
+func greater(x, y float64) float64 {
+	if x > y {
+		return x
+	}
+	return y
+}
+
+func lesser(x, y float64) float64 {
+	if x < y {
+		return x
+	}
+	return y
 }
 
 func greatestGeneric(top, at *Row, values *float64, stride, n int) {

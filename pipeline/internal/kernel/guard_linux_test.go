@@ -107,6 +107,8 @@ func (v *visit) placed(p *placing) *visit {
 		ground: copied(p, v.ground), each: copied(p, v.each),
 		at: one(p, Row{}), rowTop: one(p, Row{}), rowAt: one(p, Row{}),
 		turn: one(p, *v.turn), factors: copied(p, v.factors),
+		fast: one(p, *v.fast), phase: one(p, *v.phase), screen: one(p, *v.screen),
+		marks: copied(p, v.marks), flags: copied(p, v.flags),
 	}
 }
 

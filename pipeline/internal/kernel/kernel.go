@@ -114,6 +114,21 @@ func TraceEach(q *Slow, from *Mark, ground, rows []Row) {
 	}
 }
 
+// TraceFastEach marches a ground a of its own for each lane and keeps every step: it
+// sets rows[i] to the state at the start of step i and to the displacement there,
+//
+//	y + Jump·(a' − a) − phase·a,
+//
+// in place of its peak, from the state at the start of step 0. The number b of a
+// step is the change of the slope of a at its end. It panics unless ground has two
+// rows more.
+func TraceFastEach(q *Fast, phase *Row, from *Mark, ground []Row, rows []Mark) {
+	checkLines(len(ground)-2, len(rows), len(rows))
+	if len(rows) > 0 {
+		current.traceFastEach(q, phase, from, &ground[0], len(rows), &rows[0])
+	}
+}
+
 // GatherUnit is what the number of rows of Gather is a multiple of.
 const GatherUnit = 8
 
@@ -203,8 +218,34 @@ func ScreenSteps(s *StepScreen, rows []Row, lines []Line, flags []uint32, want u
 	}
 }
 
-// GreatestPeaks sets top to the greatest peak of each lane and at to the number
-// of the first mark that has it, both 0 for no marks. Peaks are not negative.
+// FastScreen holds for each lane what bounds the displacement within a step of Fast:
+// with s >= √(y² + z²) it departs from its chord with a curvature of at most Curve·s,
+// and from the straight line that is left of it without y by s. Phase is as in
+// TraceFastEach, and Limit is what is to be exceeded.
+type FastScreen struct{ Limit, Curve, Phase Row }
+
+// ScreenFast sets bit l of flags[i] where the displacement of lane l can exceed Limit
+// between rows[i] and rows[i+1] of TraceFastEach on a ground: where, with
+//
+//	s = max(|y|, |z|) + (√2 − 1)·min(|y|, |z|),  m = Curve·s,
+//
+// s and the greater end of the line exceed Limit, and
+//
+//	max(0, m/2 − |x' − x|)² > 2·m·(Limit − max(|x|, |x'|))
+//
+// as of ScreenSteps. It clears the bit elsewhere. It panics unless there is one row
+// more than there are flags, of both. s follows from √(1 + r²) being convex in r, so
+// that from 0 to 1 it is below its chord.
+func ScreenFast(s *FastScreen, rows []Mark, ground []Row, flags []uint32) {
+	checkLines(len(rows)-1, len(ground)-1, len(flags))
+	if len(flags) > 0 {
+		current.screenFast(s, &rows[0], &ground[0], &flags[0], len(flags))
+	}
+}
+
+// GreatestPeaks sets top to the greatest magnitude of the peaks of each lane and at
+// to the number
+// of the first mark that has it, both 0 for no marks.
 func GreatestPeaks(top, at *Row, marks []Mark) {
 	if len(marks) == 0 {
 		*top, *at = Row{}, Row{}

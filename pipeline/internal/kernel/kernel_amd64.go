@@ -59,6 +59,16 @@ func greatestAVX2(top *float64, at *float64, values *float64, stride int, n int)
 //go:noescape
 func traceEachAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64)
 
+// traceFastEachAVX2 is traceFastEachGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func traceFastEachAVX2(q *float64, phase *float64, from *float64, ground *float64, steps int, rows *float64)
+
+// screenFastAVX2 is screenFastGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func screenFastAVX2(s *float64, rows *float64, ground *float64, flags *uint32, n int)
+
 // gatherAVX2 is gatherGeneric for vectors of 4 lanes.
 //
 //go:noescape
@@ -168,6 +178,16 @@ func greatestAVX512(top *float64, at *float64, values *float64, stride int, n in
 //
 //go:noescape
 func traceEachAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64)
+
+// traceFastEachAVX512 is traceFastEachGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func traceFastEachAVX512(q *float64, phase *float64, from *float64, ground *float64, steps int, rows *float64)
+
+// screenFastAVX512 is screenFastGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func screenFastAVX512(s *float64, rows *float64, ground *float64, flags *uint32, n int)
 
 // gatherAVX512 is gatherGeneric for vectors of 8 lanes.
 //

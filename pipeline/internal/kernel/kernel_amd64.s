@@ -1834,6 +1834,542 @@ step1:
 	VZEROUPPER
 	RET
 
+// func traceFastEachAVX2(q *float64, phase *float64, from *float64, ground *float64, steps int, rows *float64)
+// Requires: AVX, FMA3
+TEXT ·traceFastEachAVX2(SB), NOSPLIT, $0-48
+	MOVQ    q+0(FP), AX
+	MOVQ    phase+8(FP), CX
+	MOVQ    from+16(FP), DX
+	MOVQ    ground+24(FP), BX
+	MOVQ    steps+32(FP), SI
+	MOVQ    rows+40(FP), DI
+	MOVQ    BX, R8
+	MOVQ    SI, R9
+	MOVQ    DI, R10
+	VMOVUPD (DX), Y0
+	VMOVUPD 256(DX), Y2
+	VMOVUPD 256(R8), Y4
+	VSUBPD  (R8), Y4, Y4
+	VMOVUPD 32(DX), Y1
+	VMOVUPD 288(DX), Y3
+	VMOVUPD 288(R8), Y5
+	VSUBPD  32(R8), Y5, Y5
+
+step0:
+	VMOVUPD      Y0, (R10)
+	VMOVUPD      Y2, 256(R10)
+	VMOVAPD      Y0, Y6
+	VFMADD231PD  1024(AX), Y4, Y6
+	VMOVUPD      (R8), Y7
+	VFNMADD231PD (CX), Y7, Y6
+	VMOVUPD      Y6, 512(R10)
+	VMOVUPD      512(R8), Y6
+	VSUBPD       256(R8), Y6, Y6
+	VSUBPD       Y4, Y6, Y7
+	VMOVAPD      Y6, Y4
+	VMULPD       1024(AX), Y7, Y6
+	VFMSUB231PD  256(AX), Y2, Y6
+	VFMADD231PD  768(AX), Y2, Y7
+	VFMADD231PD  512(AX), Y0, Y7
+	VFMADD132PD  (AX), Y6, Y0
+	VMOVAPD      Y7, Y2
+	VMOVUPD      Y1, 32(R10)
+	VMOVUPD      Y3, 288(R10)
+	VMOVAPD      Y1, Y6
+	VFMADD231PD  1056(AX), Y5, Y6
+	VMOVUPD      32(R8), Y7
+	VFNMADD231PD 32(CX), Y7, Y6
+	VMOVUPD      Y6, 544(R10)
+	VMOVUPD      544(R8), Y6
+	VSUBPD       288(R8), Y6, Y6
+	VSUBPD       Y5, Y6, Y7
+	VMOVAPD      Y6, Y5
+	VMULPD       1056(AX), Y7, Y6
+	VFMSUB231PD  288(AX), Y3, Y6
+	VFMADD231PD  800(AX), Y3, Y7
+	VFMADD231PD  544(AX), Y1, Y7
+	VFMADD132PD  32(AX), Y6, Y1
+	VMOVAPD      Y7, Y3
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x00000300, R10
+	DECQ         R9
+	JNZ          step0
+	MOVQ         BX, R8
+	MOVQ         SI, R9
+	MOVQ         DI, R10
+	VMOVUPD      64(DX), Y0
+	VMOVUPD      320(DX), Y2
+	VMOVUPD      320(R8), Y4
+	VSUBPD       64(R8), Y4, Y4
+	VMOVUPD      96(DX), Y1
+	VMOVUPD      352(DX), Y3
+	VMOVUPD      352(R8), Y5
+	VSUBPD       96(R8), Y5, Y5
+
+step1:
+	VMOVUPD      Y0, 64(R10)
+	VMOVUPD      Y2, 320(R10)
+	VMOVAPD      Y0, Y6
+	VFMADD231PD  1088(AX), Y4, Y6
+	VMOVUPD      64(R8), Y7
+	VFNMADD231PD 64(CX), Y7, Y6
+	VMOVUPD      Y6, 576(R10)
+	VMOVUPD      576(R8), Y6
+	VSUBPD       320(R8), Y6, Y6
+	VSUBPD       Y4, Y6, Y7
+	VMOVAPD      Y6, Y4
+	VMULPD       1088(AX), Y7, Y6
+	VFMSUB231PD  320(AX), Y2, Y6
+	VFMADD231PD  832(AX), Y2, Y7
+	VFMADD231PD  576(AX), Y0, Y7
+	VFMADD132PD  64(AX), Y6, Y0
+	VMOVAPD      Y7, Y2
+	VMOVUPD      Y1, 96(R10)
+	VMOVUPD      Y3, 352(R10)
+	VMOVAPD      Y1, Y6
+	VFMADD231PD  1120(AX), Y5, Y6
+	VMOVUPD      96(R8), Y7
+	VFNMADD231PD 96(CX), Y7, Y6
+	VMOVUPD      Y6, 608(R10)
+	VMOVUPD      608(R8), Y6
+	VSUBPD       352(R8), Y6, Y6
+	VSUBPD       Y5, Y6, Y7
+	VMOVAPD      Y6, Y5
+	VMULPD       1120(AX), Y7, Y6
+	VFMSUB231PD  352(AX), Y3, Y6
+	VFMADD231PD  864(AX), Y3, Y7
+	VFMADD231PD  608(AX), Y1, Y7
+	VFMADD132PD  96(AX), Y6, Y1
+	VMOVAPD      Y7, Y3
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x00000300, R10
+	DECQ         R9
+	JNZ          step1
+	MOVQ         BX, R8
+	MOVQ         SI, R9
+	MOVQ         DI, R10
+	VMOVUPD      128(DX), Y0
+	VMOVUPD      384(DX), Y2
+	VMOVUPD      384(R8), Y4
+	VSUBPD       128(R8), Y4, Y4
+	VMOVUPD      160(DX), Y1
+	VMOVUPD      416(DX), Y3
+	VMOVUPD      416(R8), Y5
+	VSUBPD       160(R8), Y5, Y5
+
+step2:
+	VMOVUPD      Y0, 128(R10)
+	VMOVUPD      Y2, 384(R10)
+	VMOVAPD      Y0, Y6
+	VFMADD231PD  1152(AX), Y4, Y6
+	VMOVUPD      128(R8), Y7
+	VFNMADD231PD 128(CX), Y7, Y6
+	VMOVUPD      Y6, 640(R10)
+	VMOVUPD      640(R8), Y6
+	VSUBPD       384(R8), Y6, Y6
+	VSUBPD       Y4, Y6, Y7
+	VMOVAPD      Y6, Y4
+	VMULPD       1152(AX), Y7, Y6
+	VFMSUB231PD  384(AX), Y2, Y6
+	VFMADD231PD  896(AX), Y2, Y7
+	VFMADD231PD  640(AX), Y0, Y7
+	VFMADD132PD  128(AX), Y6, Y0
+	VMOVAPD      Y7, Y2
+	VMOVUPD      Y1, 160(R10)
+	VMOVUPD      Y3, 416(R10)
+	VMOVAPD      Y1, Y6
+	VFMADD231PD  1184(AX), Y5, Y6
+	VMOVUPD      160(R8), Y7
+	VFNMADD231PD 160(CX), Y7, Y6
+	VMOVUPD      Y6, 672(R10)
+	VMOVUPD      672(R8), Y6
+	VSUBPD       416(R8), Y6, Y6
+	VSUBPD       Y5, Y6, Y7
+	VMOVAPD      Y6, Y5
+	VMULPD       1184(AX), Y7, Y6
+	VFMSUB231PD  416(AX), Y3, Y6
+	VFMADD231PD  928(AX), Y3, Y7
+	VFMADD231PD  672(AX), Y1, Y7
+	VFMADD132PD  160(AX), Y6, Y1
+	VMOVAPD      Y7, Y3
+	ADDQ         $0x00000100, R8
+	ADDQ         $0x00000300, R10
+	DECQ         R9
+	JNZ          step2
+	MOVQ         SI, SI
+	VMOVUPD      192(DX), Y0
+	VMOVUPD      448(DX), Y2
+	VMOVUPD      448(BX), Y4
+	VSUBPD       192(BX), Y4, Y4
+	VMOVUPD      224(DX), Y1
+	VMOVUPD      480(DX), Y3
+	VMOVUPD      480(BX), Y5
+	VSUBPD       224(BX), Y5, Y5
+
+step3:
+	VMOVUPD      Y0, 192(DI)
+	VMOVUPD      Y2, 448(DI)
+	VMOVAPD      Y0, Y6
+	VFMADD231PD  1216(AX), Y4, Y6
+	VMOVUPD      192(BX), Y7
+	VFNMADD231PD 192(CX), Y7, Y6
+	VMOVUPD      Y6, 704(DI)
+	VMOVUPD      704(BX), Y6
+	VSUBPD       448(BX), Y6, Y6
+	VSUBPD       Y4, Y6, Y7
+	VMOVAPD      Y6, Y4
+	VMULPD       1216(AX), Y7, Y6
+	VFMSUB231PD  448(AX), Y2, Y6
+	VFMADD231PD  960(AX), Y2, Y7
+	VFMADD231PD  704(AX), Y0, Y7
+	VFMADD132PD  192(AX), Y6, Y0
+	VMOVAPD      Y7, Y2
+	VMOVUPD      Y1, 224(DI)
+	VMOVUPD      Y3, 480(DI)
+	VMOVAPD      Y1, Y6
+	VFMADD231PD  1248(AX), Y5, Y6
+	VMOVUPD      224(BX), Y7
+	VFNMADD231PD 224(CX), Y7, Y6
+	VMOVUPD      Y6, 736(DI)
+	VMOVUPD      736(BX), Y6
+	VSUBPD       480(BX), Y6, Y6
+	VSUBPD       Y5, Y6, Y7
+	VMOVAPD      Y6, Y5
+	VMULPD       1248(AX), Y7, Y6
+	VFMSUB231PD  480(AX), Y3, Y6
+	VFMADD231PD  992(AX), Y3, Y7
+	VFMADD231PD  736(AX), Y1, Y7
+	VFMADD132PD  224(AX), Y6, Y1
+	VMOVAPD      Y7, Y3
+	ADDQ         $0x00000100, BX
+	ADDQ         $0x00000300, DI
+	DECQ         SI
+	JNZ          step3
+	VZEROUPPER
+	RET
+
+// func screenFastAVX2(s *float64, rows *float64, ground *float64, flags *uint32, n int)
+// Requires: AVX, AVX2, FMA3
+TEXT ·screenFastAVX2(SB), NOSPLIT, $0-40
+	MOVQ         s+0(FP), AX
+	MOVQ         rows+8(FP), CX
+	MOVQ         ground+16(FP), DX
+	MOVQ         flags+24(FP), BX
+	MOVQ         n+32(FP), SI
+	VPCMPEQQ     Y0, Y0, Y0
+	VPSRLQ       $0x01, Y0, Y0
+	MOVQ         $0x3fe0000000000000, DI
+	VMOVQ        DI, X1
+	VBROADCASTSD X1, Y2
+	MOVQ         $0x3fda827999fcef33, DI
+	VMOVQ        DI, X1
+	VBROADCASTSD X1, Y3
+	VPXOR        Y1, Y1, Y1
+	TESTQ        SI, SI
+	JLE          step_done
+
+step:
+	XORL         R9, R9
+	VMOVUPD      736(CX), Y4
+	VMOVUPD      1504(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        224(CX), Y0, Y9
+	VPAND        480(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       224(CX), Y4, Y4
+	VMOVUPD      480(DX), Y7
+	VSUBPD       224(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 736(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       480(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      224(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      704(CX), Y4
+	VMOVUPD      1472(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        192(CX), Y0, Y9
+	VPAND        448(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       192(CX), Y4, Y4
+	VMOVUPD      448(DX), Y7
+	VSUBPD       192(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 704(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       448(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      192(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      672(CX), Y4
+	VMOVUPD      1440(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        160(CX), Y0, Y9
+	VPAND        416(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       160(CX), Y4, Y4
+	VMOVUPD      416(DX), Y7
+	VSUBPD       160(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 672(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       416(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      160(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      640(CX), Y4
+	VMOVUPD      1408(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        128(CX), Y0, Y9
+	VPAND        384(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       128(CX), Y4, Y4
+	VMOVUPD      384(DX), Y7
+	VSUBPD       128(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 640(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       384(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      128(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      608(CX), Y4
+	VMOVUPD      1376(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        96(CX), Y0, Y9
+	VPAND        352(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       96(CX), Y4, Y4
+	VMOVUPD      352(DX), Y7
+	VSUBPD       96(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 608(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       352(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      96(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      576(CX), Y4
+	VMOVUPD      1344(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        64(CX), Y0, Y9
+	VPAND        320(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       64(CX), Y4, Y4
+	VMOVUPD      320(DX), Y7
+	VSUBPD       64(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 576(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       320(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      64(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      544(CX), Y4
+	VMOVUPD      1312(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        32(CX), Y0, Y9
+	VPAND        288(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       32(CX), Y4, Y4
+	VMOVUPD      288(DX), Y7
+	VSUBPD       32(DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 544(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       288(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      32(AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	VMOVUPD      512(CX), Y4
+	VMOVUPD      1280(CX), Y6
+	VSUBPD       Y4, Y6, Y5
+	VPAND        Y0, Y5, Y5
+	VPAND        Y0, Y6, Y6
+	VPAND        Y0, Y4, Y7
+	VMAXPD       Y6, Y7, Y6
+	VPAND        (CX), Y0, Y9
+	VPAND        256(CX), Y0, Y7
+	VMAXPD       Y7, Y9, Y8
+	VMINPD       Y7, Y9, Y7
+	VFMADD231PD  Y3, Y7, Y8
+	VSUBPD       (CX), Y4, Y4
+	VMOVUPD      256(DX), Y7
+	VSUBPD       (DX), Y7, Y7
+	VMOVAPD      Y4, Y9
+	VFNMADD231PD 512(AX), Y7, Y9
+	VPAND        Y0, Y4, Y4
+	VPAND        Y0, Y9, Y9
+	VMAXPD       Y9, Y4, Y9
+	VADDPD       Y8, Y9, Y9
+	VMULPD       256(AX), Y8, Y4
+	VFMSUB231PD  Y2, Y4, Y5
+	VMAXPD       Y1, Y5, Y5
+	VMULPD       Y5, Y5, Y5
+	VMOVUPD      (AX), Y7
+	VSUBPD       Y6, Y7, Y6
+	VADDPD       Y4, Y4, Y4
+	VMULPD       Y6, Y4, Y4
+	VCMPPD       $0x0e, Y7, Y9, Y9
+	VMOVMSKPD    Y9, R8
+	VCMPPD       $0x0e, Y4, Y5, Y5
+	VMOVMSKPD    Y5, DI
+	ANDL         R8, DI
+	SHLL         $0x04, R9
+	ORL          DI, R9
+	MOVL         R9, (BX)
+	ADDQ         $0x00000300, CX
+	ADDQ         $0x00000100, DX
+	SUBQ         $0x04, BX
+	ADDQ         $0x08, BX
+	DECQ         SI
+	JNZ          step
+
+step_done:
+	VZEROUPPER
+	RET
+
 // func gatherAVX2(rows *float64, a *float64, from *int, n int)
 // Requires: AVX
 TEXT ·gatherAVX2(SB), NOSPLIT, $0-32
@@ -8088,6 +8624,287 @@ step0:
 	ADDQ         $0x00000100, SI
 	DECQ         BX
 	JNZ          step0
+	VZEROUPPER
+	RET
+
+// func traceFastEachAVX512(q *float64, phase *float64, from *float64, ground *float64, steps int, rows *float64)
+// Requires: AVX, AVX512F
+TEXT ·traceFastEachAVX512(SB), NOSPLIT, $0-48
+	MOVQ    q+0(FP), AX
+	MOVQ    phase+8(FP), CX
+	MOVQ    from+16(FP), DX
+	MOVQ    ground+24(FP), BX
+	MOVQ    steps+32(FP), SI
+	MOVQ    rows+40(FP), DI
+	MOVQ    SI, SI
+	VMOVUPD (DX), Z0
+	VMOVUPD 256(DX), Z4
+	VMOVUPD 256(BX), Z8
+	VSUBPD  (BX), Z8, Z8
+	VMOVUPD 64(DX), Z1
+	VMOVUPD 320(DX), Z5
+	VMOVUPD 320(BX), Z9
+	VSUBPD  64(BX), Z9, Z9
+	VMOVUPD 128(DX), Z2
+	VMOVUPD 384(DX), Z6
+	VMOVUPD 384(BX), Z10
+	VSUBPD  128(BX), Z10, Z10
+	VMOVUPD 192(DX), Z3
+	VMOVUPD 448(DX), Z7
+	VMOVUPD 448(BX), Z11
+	VSUBPD  192(BX), Z11, Z11
+
+step0:
+	VMOVUPD      Z0, (DI)
+	VMOVUPD      Z4, 256(DI)
+	VMOVAPD      Z0, Z12
+	VFMADD231PD  1024(AX), Z8, Z12
+	VMOVUPD      (BX), Z13
+	VFNMADD231PD (CX), Z13, Z12
+	VMOVUPD      Z12, 512(DI)
+	VMOVUPD      512(BX), Z12
+	VSUBPD       256(BX), Z12, Z12
+	VSUBPD       Z8, Z12, Z13
+	VMOVAPD      Z12, Z8
+	VMULPD       1024(AX), Z13, Z12
+	VFMSUB231PD  256(AX), Z4, Z12
+	VFMADD231PD  768(AX), Z4, Z13
+	VFMADD231PD  512(AX), Z0, Z13
+	VFMADD132PD  (AX), Z12, Z0
+	VMOVAPD      Z13, Z4
+	VMOVUPD      Z1, 64(DI)
+	VMOVUPD      Z5, 320(DI)
+	VMOVAPD      Z1, Z12
+	VFMADD231PD  1088(AX), Z9, Z12
+	VMOVUPD      64(BX), Z13
+	VFNMADD231PD 64(CX), Z13, Z12
+	VMOVUPD      Z12, 576(DI)
+	VMOVUPD      576(BX), Z12
+	VSUBPD       320(BX), Z12, Z12
+	VSUBPD       Z9, Z12, Z13
+	VMOVAPD      Z12, Z9
+	VMULPD       1088(AX), Z13, Z12
+	VFMSUB231PD  320(AX), Z5, Z12
+	VFMADD231PD  832(AX), Z5, Z13
+	VFMADD231PD  576(AX), Z1, Z13
+	VFMADD132PD  64(AX), Z12, Z1
+	VMOVAPD      Z13, Z5
+	VMOVUPD      Z2, 128(DI)
+	VMOVUPD      Z6, 384(DI)
+	VMOVAPD      Z2, Z12
+	VFMADD231PD  1152(AX), Z10, Z12
+	VMOVUPD      128(BX), Z13
+	VFNMADD231PD 128(CX), Z13, Z12
+	VMOVUPD      Z12, 640(DI)
+	VMOVUPD      640(BX), Z12
+	VSUBPD       384(BX), Z12, Z12
+	VSUBPD       Z10, Z12, Z13
+	VMOVAPD      Z12, Z10
+	VMULPD       1152(AX), Z13, Z12
+	VFMSUB231PD  384(AX), Z6, Z12
+	VFMADD231PD  896(AX), Z6, Z13
+	VFMADD231PD  640(AX), Z2, Z13
+	VFMADD132PD  128(AX), Z12, Z2
+	VMOVAPD      Z13, Z6
+	VMOVUPD      Z3, 192(DI)
+	VMOVUPD      Z7, 448(DI)
+	VMOVAPD      Z3, Z12
+	VFMADD231PD  1216(AX), Z11, Z12
+	VMOVUPD      192(BX), Z13
+	VFNMADD231PD 192(CX), Z13, Z12
+	VMOVUPD      Z12, 704(DI)
+	VMOVUPD      704(BX), Z12
+	VSUBPD       448(BX), Z12, Z12
+	VSUBPD       Z11, Z12, Z13
+	VMOVAPD      Z12, Z11
+	VMULPD       1216(AX), Z13, Z12
+	VFMSUB231PD  448(AX), Z7, Z12
+	VFMADD231PD  960(AX), Z7, Z13
+	VFMADD231PD  704(AX), Z3, Z13
+	VFMADD132PD  192(AX), Z12, Z3
+	VMOVAPD      Z13, Z7
+	ADDQ         $0x00000100, BX
+	ADDQ         $0x00000300, DI
+	DECQ         SI
+	JNZ          step0
+	VZEROUPPER
+	RET
+
+// func screenFastAVX512(s *float64, rows *float64, ground *float64, flags *uint32, n int)
+// Requires: AVX, AVX512F
+TEXT ·screenFastAVX512(SB), NOSPLIT, $0-40
+	MOVQ         s+0(FP), AX
+	MOVQ         rows+8(FP), CX
+	MOVQ         ground+16(FP), DX
+	MOVQ         flags+24(FP), BX
+	MOVQ         n+32(FP), SI
+	VPTERNLOGQ   $0xff, Z0, Z0, Z0
+	VPSRLQ       $0x01, Z0, Z0
+	MOVQ         $0x3fe0000000000000, DI
+	VMOVQ        DI, X2
+	VBROADCASTSD X2, Z2
+	MOVQ         $0x3fda827999fcef33, DI
+	VMOVQ        DI, X3
+	VBROADCASTSD X3, Z3
+	VPXORQ       Z1, Z1, Z1
+	TESTQ        SI, SI
+	JLE          step_done
+
+step:
+	XORL         R9, R9
+	VMOVUPD      704(CX), Z4
+	VMOVUPD      1472(CX), Z6
+	VSUBPD       Z4, Z6, Z5
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VPANDQ       Z0, Z4, Z7
+	VMAXPD       Z6, Z7, Z6
+	VPANDQ       192(CX), Z0, Z9
+	VPANDQ       448(CX), Z0, Z7
+	VMAXPD       Z7, Z9, Z8
+	VMINPD       Z7, Z9, Z7
+	VFMADD231PD  Z3, Z7, Z8
+	VSUBPD       192(CX), Z4, Z4
+	VMOVUPD      448(DX), Z7
+	VSUBPD       192(DX), Z7, Z7
+	VMOVAPD      Z4, Z9
+	VFNMADD231PD 704(AX), Z7, Z9
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z9, Z9
+	VMAXPD       Z9, Z4, Z9
+	VADDPD       Z8, Z9, Z9
+	VMULPD       448(AX), Z8, Z4
+	VFMSUB231PD  Z2, Z4, Z5
+	VMAXPD       Z1, Z5, Z5
+	VMULPD       Z5, Z5, Z5
+	VMOVUPD      192(AX), Z7
+	VSUBPD       Z6, Z7, Z6
+	VADDPD       Z4, Z4, Z4
+	VMULPD       Z6, Z4, Z4
+	VCMPPD       $0x0e, Z7, Z9, K1
+	KMOVW        K1, R8
+	VCMPPD       $0x0e, Z4, Z5, K1
+	KMOVW        K1, DI
+	ANDL         R8, DI
+	SHLL         $0x08, R9
+	ORL          DI, R9
+	VMOVUPD      640(CX), Z4
+	VMOVUPD      1408(CX), Z6
+	VSUBPD       Z4, Z6, Z5
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VPANDQ       Z0, Z4, Z7
+	VMAXPD       Z6, Z7, Z6
+	VPANDQ       128(CX), Z0, Z9
+	VPANDQ       384(CX), Z0, Z7
+	VMAXPD       Z7, Z9, Z8
+	VMINPD       Z7, Z9, Z7
+	VFMADD231PD  Z3, Z7, Z8
+	VSUBPD       128(CX), Z4, Z4
+	VMOVUPD      384(DX), Z7
+	VSUBPD       128(DX), Z7, Z7
+	VMOVAPD      Z4, Z9
+	VFNMADD231PD 640(AX), Z7, Z9
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z9, Z9
+	VMAXPD       Z9, Z4, Z9
+	VADDPD       Z8, Z9, Z9
+	VMULPD       384(AX), Z8, Z4
+	VFMSUB231PD  Z2, Z4, Z5
+	VMAXPD       Z1, Z5, Z5
+	VMULPD       Z5, Z5, Z5
+	VMOVUPD      128(AX), Z7
+	VSUBPD       Z6, Z7, Z6
+	VADDPD       Z4, Z4, Z4
+	VMULPD       Z6, Z4, Z4
+	VCMPPD       $0x0e, Z7, Z9, K1
+	KMOVW        K1, R8
+	VCMPPD       $0x0e, Z4, Z5, K1
+	KMOVW        K1, DI
+	ANDL         R8, DI
+	SHLL         $0x08, R9
+	ORL          DI, R9
+	VMOVUPD      576(CX), Z4
+	VMOVUPD      1344(CX), Z6
+	VSUBPD       Z4, Z6, Z5
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VPANDQ       Z0, Z4, Z7
+	VMAXPD       Z6, Z7, Z6
+	VPANDQ       64(CX), Z0, Z9
+	VPANDQ       320(CX), Z0, Z7
+	VMAXPD       Z7, Z9, Z8
+	VMINPD       Z7, Z9, Z7
+	VFMADD231PD  Z3, Z7, Z8
+	VSUBPD       64(CX), Z4, Z4
+	VMOVUPD      320(DX), Z7
+	VSUBPD       64(DX), Z7, Z7
+	VMOVAPD      Z4, Z9
+	VFNMADD231PD 576(AX), Z7, Z9
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z9, Z9
+	VMAXPD       Z9, Z4, Z9
+	VADDPD       Z8, Z9, Z9
+	VMULPD       320(AX), Z8, Z4
+	VFMSUB231PD  Z2, Z4, Z5
+	VMAXPD       Z1, Z5, Z5
+	VMULPD       Z5, Z5, Z5
+	VMOVUPD      64(AX), Z7
+	VSUBPD       Z6, Z7, Z6
+	VADDPD       Z4, Z4, Z4
+	VMULPD       Z6, Z4, Z4
+	VCMPPD       $0x0e, Z7, Z9, K1
+	KMOVW        K1, R8
+	VCMPPD       $0x0e, Z4, Z5, K1
+	KMOVW        K1, DI
+	ANDL         R8, DI
+	SHLL         $0x08, R9
+	ORL          DI, R9
+	VMOVUPD      512(CX), Z4
+	VMOVUPD      1280(CX), Z6
+	VSUBPD       Z4, Z6, Z5
+	VPANDQ       Z0, Z5, Z5
+	VPANDQ       Z0, Z6, Z6
+	VPANDQ       Z0, Z4, Z7
+	VMAXPD       Z6, Z7, Z6
+	VPANDQ       (CX), Z0, Z9
+	VPANDQ       256(CX), Z0, Z7
+	VMAXPD       Z7, Z9, Z8
+	VMINPD       Z7, Z9, Z7
+	VFMADD231PD  Z3, Z7, Z8
+	VSUBPD       (CX), Z4, Z4
+	VMOVUPD      256(DX), Z7
+	VSUBPD       (DX), Z7, Z7
+	VMOVAPD      Z4, Z9
+	VFNMADD231PD 512(AX), Z7, Z9
+	VPANDQ       Z0, Z4, Z4
+	VPANDQ       Z0, Z9, Z9
+	VMAXPD       Z9, Z4, Z9
+	VADDPD       Z8, Z9, Z9
+	VMULPD       256(AX), Z8, Z4
+	VFMSUB231PD  Z2, Z4, Z5
+	VMAXPD       Z1, Z5, Z5
+	VMULPD       Z5, Z5, Z5
+	VMOVUPD      (AX), Z7
+	VSUBPD       Z6, Z7, Z6
+	VADDPD       Z4, Z4, Z4
+	VMULPD       Z6, Z4, Z4
+	VCMPPD       $0x0e, Z7, Z9, K1
+	KMOVW        K1, R8
+	VCMPPD       $0x0e, Z4, Z5, K1
+	KMOVW        K1, DI
+	ANDL         R8, DI
+	SHLL         $0x08, R9
+	ORL          DI, R9
+	MOVL         R9, (BX)
+	ADDQ         $0x00000300, CX
+	ADDQ         $0x00000100, DX
+	SUBQ         $0x04, BX
+	ADDQ         $0x08, BX
+	DECQ         SI
+	JNZ          step
+
+step_done:
 	VZEROUPPER
 	RET
 

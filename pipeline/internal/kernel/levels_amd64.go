@@ -20,6 +20,8 @@ func vectorLevels() []level {
 			screenSteps:   stepScreening(screenStepsAVX512),
 			greatest:      maximum(greatestAVX512),
 			traceEach:     eachTrace(traceEachAVX512),
+			traceFastEach: eachFastTrace(traceFastEachAVX512),
+			screenFast:    fastScreening(screenFastAVX512),
 			gather:        gathering(gatherAVX512),
 			turn:          turning(turnAVX512),
 			marchStride:   strideMarch(marchStrideAVX512),
@@ -47,6 +49,8 @@ func vectorLevels() []level {
 			screenSteps:   stepScreening(screenStepsAVX2),
 			greatest:      maximum(greatestAVX2),
 			traceEach:     eachTrace(traceEachAVX2),
+			traceFastEach: eachFastTrace(traceFastEachAVX2),
+			screenFast:    fastScreening(screenFastAVX2),
 			gather:        gathering(gatherAVX2),
 			turn:          turning(turnAVX2),
 			marchStride:   strideMarch(marchStrideAVX2),
@@ -109,6 +113,18 @@ func maximum(f func(top, at, values *float64, stride, n int)) func(*Row, *Row, *
 func eachTrace(f func(q, from, ground *float64, steps int, rows *float64)) func(*Slow, *Mark, *Row, int, *Row) {
 	return func(q *Slow, from *Mark, ground *Row, steps int, rows *Row) {
 		f(&q.Decay[0], &from.X[0], &ground[0], steps, &rows[0])
+	}
+}
+
+func eachFastTrace(f func(q, phase, from, ground *float64, steps int, rows *float64)) func(*Fast, *Row, *Mark, *Row, int, *Mark) {
+	return func(q *Fast, phase *Row, from *Mark, ground *Row, steps int, rows *Mark) {
+		f(&q.YY[0], &phase[0], &from.X[0], &ground[0], steps, &rows.X[0])
+	}
+}
+
+func fastScreening(f func(s, rows, ground *float64, flags *uint32, n int)) func(*FastScreen, *Mark, *Row, *uint32, int) {
+	return func(s *FastScreen, rows *Mark, ground *Row, flags *uint32, n int) {
+		f(&s.Limit[0], &rows.X[0], &ground[0], flags, n)
 	}
 }
 

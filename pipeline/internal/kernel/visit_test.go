@@ -18,6 +18,11 @@ type visit struct {
 	rowTop, rowAt *Row
 	turn          *Turning
 	factors       []Row
+	fast          *Fast
+	phase         *Row
+	screen        *FastScreen
+	marks         []Mark
+	flags         []uint32
 }
 
 // newVisit spreads lanes over the ground of a case and has series of 5 to MaxTerms
@@ -30,6 +35,8 @@ func newVisit(c *testCase) *visit {
 		turn: new(Turning), factors: make([]Row, 5+len(c.ground)%(MaxTerms-4)),
 	}
 	*v.turn = c.turn
+	v.fast, v.phase, v.marks, v.flags = &c.fast, &c.stride.VU, make([]Mark, max(n-2, 0)), make([]uint32, max(n-3, 0))
+	v.screen = &FastScreen{Limit: c.steps.Best, Curve: c.steps.Curve, Phase: *v.phase}
 	for l := range Lanes {
 		v.from[l] = l * l % (len(c.ground) - n + 1)
 		for k := range len(v.factors) - l%3 {
@@ -45,8 +52,19 @@ func (v *visit) run(a []float64) []Row {
 	TraceEach(v.slow, v.start, v.ground, v.each)
 	GreatestRows(v.rowTop, v.rowAt, v.each)
 	Turn(v.turn, v.factors)
-	t := v.turn
-	return slices.Concat(v.ground, v.each, []Row{*v.rowTop, *v.rowAt, t.Top, t.Time, t.Move, t.Velocity, t.Bend}, t.C[:])
+	t, states := v.turn, make([]Row, 0, 3*len(v.marks))
+	if len(v.ground) > 0 {
+		TraceFastEach(v.fast, v.phase, v.start, v.ground, v.marks)
+		ScreenFast(v.screen, v.marks, v.ground[:len(v.marks)], v.flags)
+	}
+	for _, m := range v.marks {
+		states = append(states, m.X, m.Y, m.Peak)
+	}
+	flags := make([]Row, len(v.flags)) // as numbers
+	for i := range flags {
+		flags[i][0] = float64(v.flags[i])
+	}
+	return slices.Concat(states, flags, v.ground, v.each, []Row{*v.rowTop, *v.rowAt, t.Top, t.Time, t.Move, t.Velocity, t.Bend}, t.C[:])
 }
 
 // TestVisitIsItsDefinition checks the portable kernel's gathering, tracing and
@@ -77,6 +95,57 @@ func TestVisitIsItsDefinition(t *testing.T) {
 		if v.rowTop[l] != top || v.rowAt[l] != float64(at) {
 			t.Errorf("lane %d: the greatest is %v in row %v, want %v in %d", l, v.rowTop[l], v.rowAt[l], top, at)
 		}
+	}
+}
+
+// TestFastVisitIsItsDefinition does so for the fast form, against the march of one
+// ground and, for the screen, against the two bounds with √(y² + z²) itself: it lets
+// all through that these do, and none that they would not with 1.083 of it, the most
+// that s exceeds it by.
+func TestFastVisitIsItsDefinition(t *testing.T) {
+	use(t, Portable)
+	c := newCase(14, 130)
+	v := newVisit(c)
+	v.run(c.ground)
+	passed, held := 0, 0
+	for l := range Lanes {
+		a := c.ground[v.from[l]:][:len(v.ground)]
+		bend, rows := make([]float64, len(a)-2), make([]Mark, len(a)-2)
+		for k := range bend {
+			bend[k] = (a[k+2] - a[k+1]) - (a[k+1] - a[k])
+		}
+		TraceFast(&c.fast, &c.start, bend, rows, 1<<l)
+		jump, phase, limit, curve := c.fast.Jump[l], v.phase[l], v.screen.Limit[l], v.screen.Curve[l]
+		for k := range rows {
+			got := &v.marks[k]
+			x := rows[k].X[l] + jump*(a[k+1]-a[k]) - phase*a[k]
+			if got.X[l] != rows[k].X[l] || got.Y[l] != rows[k].Y[l] || math.Abs(got.Peak[l]-x) > 1e-14*(1+math.Abs(x)) {
+				t.Fatalf("lane %d: trace %d = %v %v %v, want %v %v %v", l, k, got.X[l], got.Y[l], got.Peak[l], rows[k].X[l], rows[k].Y[l], x)
+			}
+		}
+		for k := range v.flags {
+			x, end := v.marks[k].Peak[l], v.marks[k+1].Peak[l]
+			line := jump*(a[k+1]-a[k]) - phase*a[k]
+			last := line - phase*(a[k+1]-a[k])
+			can := func(size float64) bool {
+				spare := max(0, curve*size/2-math.Abs(end-x))
+				return max(math.Abs(line), math.Abs(last))+size > limit &&
+					spare*spare > 2*curve*size*(limit-max(math.Abs(x), math.Abs(end)))
+			}
+			size := math.Hypot(rows[k].X[l], rows[k].Y[l])
+			got := v.flags[k]>>l&1 == 1
+			if !got && can(size*(1-1e-12)) || got && !can(size*1.083) {
+				t.Errorf("lane %d, step %d: flag %v", l, k, got)
+			}
+			if got {
+				passed++
+			} else {
+				held++
+			}
+		}
+	}
+	if passed == 0 || held == 0 {
+		t.Errorf("%d flags and %d without, so that the test shows nothing", passed, held)
 	}
 }
 

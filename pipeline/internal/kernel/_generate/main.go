@@ -50,6 +50,8 @@ func main() {
 		l.mix()
 		l.greatest()
 		l.traceEach()
+		l.traceFastEach()
+		l.screenFast()
 		l.gather()
 		l.turn()
 		l.widen()

@@ -56,6 +56,127 @@ func (l level) traceEach() {
 	RET()
 }
 
+// traceFastEach is traceFast with a ground for each lane, of which it forms the
+// numbers of the steps, and with displacements in place of squares.
+func (l level) traceFastEach() {
+	TEXT("traceFastEach"+l.name, NOSPLIT, "func(q, phase, from, ground *float64, steps int, rows *float64)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("traceFastEach%s is traceFastEachGeneric for vectors of %d lanes.", l.name, l.width))
+	q, phase, from := Load(Param("q"), GP64()), Load(Param("phase"), GP64()), Load(Param("from"), GP64())
+	ground, steps, rows := Load(Param("ground"), GP64()), Load(Param("steps"), GP64()), Load(Param("rows"), GP64())
+	wide := l
+	if !l.keep {
+		wide.vectors = 2
+	}
+	wide.passes(func(offset, pass int) {
+		a, n, out := GP64(), GP64(), GP64()
+		MOVQ(ground, a)
+		MOVQ(steps, n)
+		MOVQ(rows, out)
+		y, z, slope := wide.some(), wide.some(), wide.some()
+		for v := range y {
+			VMOVUPD(l.at(from, markX, offset, v), y[v])
+			VMOVUPD(l.at(from, markY, offset, v), z[v])
+			VMOVUPD(l.at(a, 1, offset, v), slope[v])
+			VSUBPD(l.at(a, 0, offset, v), slope[v], slope[v])
+		}
+		step := fmt.Sprintf("step%d", pass)
+		Label(step)
+		for v := range y {
+			c := func(r int) operand.Mem { return l.at(q, r, offset, v) }
+			x, b, s, t := l.vector(), l.vector(), l.vector(), l.vector()
+			VMOVUPD(y[v], l.at(out, markX, offset, v))
+			VMOVUPD(z[v], l.at(out, markY, offset, v))
+			VMOVAPD(y[v], x)
+			VFMADD231PD(c(fastJump), slope[v], x)
+			VMOVUPD(l.at(a, 0, offset, v), t)
+			VFNMADD231PD(l.at(phase, 0, offset, v), t, x)
+			VMOVUPD(x, l.at(out, markPeak, offset, v))
+			VMOVUPD(l.at(a, 2, offset, v), x)
+			VSUBPD(l.at(a, 1, offset, v), x, x)
+			VSUBPD(slope[v], x, b)
+			VMOVAPD(x, slope[v])
+			VMULPD(c(fastJump), b, s)
+			VFMSUB231PD(c(fastYZ), z[v], s)
+			VFMADD231PD(c(fastZZ), z[v], b)
+			VFMADD231PD(c(fastZY), y[v], b)
+			VFMADD132PD(c(fastYY), s, y[v])
+			VMOVAPD(b, z[v])
+		}
+		ADDQ(operand.U32(row), a)
+		ADDQ(operand.U32(3*row), out)
+		DECQ(n)
+		JNZ(operand.LabelRef(step))
+	})
+	VZEROUPPER()
+	RET()
+}
+
+// screenFast compares what displacements can reach within steps with a limit.
+func (l level) screenFast() {
+	TEXT("screenFast"+l.name, NOSPLIT, "func(s, rows, ground *float64, flags *uint32, n int)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("screenFast%s is screenFastGeneric for vectors of %d lanes.", l.name, l.width))
+	s, rows, ground := Load(Param("s"), GP64()), Load(Param("rows"), GP64()), Load(Param("ground"), GP64())
+	flags, n := Load(Param("flags"), GP64()), Load(Param("n"), GP64())
+	mask, zero, half, share := l.absolute(), l.vector(), l.constant(0.5), l.constant(diagonal)
+	l.zero(zero)
+	bits, also, sum := GP32(), GP32(), GP32()
+	input{}.loop("step", flags, n, nil, func() {
+		XORL(sum, sum)
+		for v := lanes/l.width - 1; v >= 0; v-- {
+			x, d, top, t := l.vector(), l.vector(), l.vector(), l.vector()
+			VMOVUPD(l.at(rows, markPeak, 0, v), x)
+			VMOVUPD(l.at(rows, 3+markPeak, 0, v), top)
+			VSUBPD(x, top, d)
+			l.and(mask, d, d)
+			l.and(mask, top, top)
+			l.and(mask, x, t)
+			VMAXPD(top, t, top) // the greater end
+			size, y := l.vector(), l.vector()
+			l.and(l.at(rows, markX, 0, v), mask, y)
+			l.and(l.at(rows, markY, 0, v), mask, t)
+			VMAXPD(t, y, size)
+			VMINPD(t, y, t)
+			VFMADD231PD(share, t, size)
+			line := l.vector()
+			VSUBPD(l.at(rows, markX, 0, v), x, line)
+			VMOVUPD(l.at(ground, 1, 0, v), t)
+			VSUBPD(l.at(ground, 0, 0, v), t, t)
+			VMOVAPD(line, y)
+			VFNMADD231PD(l.at(s, 2, 0, v), t, y)
+			l.and(mask, line, line)
+			l.and(mask, y, y)
+			VMAXPD(y, line, y)
+			VADDPD(size, y, y)
+			m := l.vector()
+			VMULPD(l.at(s, 1, 0, v), size, m)
+			VFMSUB231PD(half, m, d) // what the displacement can exceed the chord by: half·m − d
+			VMAXPD(zero, d, d)
+			VMULPD(d, d, d)
+			limit := l.vector()
+			VMOVUPD(l.at(s, 0, 0, v), limit)
+			VSUBPD(top, limit, top)
+			VADDPD(m, m, m)
+			VMULPD(top, m, m)
+			l.compare(y, limit, also)
+			l.compare(d, m, bits)
+			ANDL(also, bits)
+			SHLL(operand.U8(l.width), sum)
+			ORL(bits, sum)
+		}
+		MOVL(sum, operand.Mem{Base: flags})
+		ADDQ(operand.U32(3*row), rows)
+		ADDQ(operand.U32(row), ground)
+		SUBQ(operand.Imm(4), flags) // the loop moves on by 8
+	})
+	VZEROUPPER()
+	RET()
+}
+
+// diagonal is kernel.diagonal.
+const diagonal = 0.4142135623730951
+
 // gather turns a square of as many lanes as samples at a time.
 func (l level) gather() {
 	TEXT("gather"+l.name, NOSPLIT, "func(rows, a *float64, from *int, n int)")
