@@ -50,14 +50,13 @@ func slowExcess(m *motion, o *slow) (worst float64) {
 	g := newSlowGroups([]slow{*o})[0]
 	g.march(m)
 	for b := range m.blocks() {
-		bound := o.bound(math.Abs(o.eq.scale)*m.marks[b].Peak[0], m.blockLines[b].First, 0)
-		a := m.slowSamples(b)
-		rows := m.rows[:len(a)-1]
-		rows[0] = m.marks[b].X
-		kernel.TraceSlow(g.eq, &m.marks[b], a, rows[1:], 1)
+		bound := o.trainBound() * m.marks[b].Peak[0]
+		from, to := m.block(b)
+		a, rows := m.a[from:to+1], m.rows[:to-from+1]
+		g.trace(m, b, rows, 1)
 		for k := range len(rows) - 1 {
 			u, end := o.eq.scale*rows[k][0], o.eq.scale*rows[k+1][0]
-			top, _, _ := o.series.peak(0, u, o.velocity(u, end-u, a[k+1], a[k+2]), a[k+1], a[k+2]-a[k+1])
+			top, _, _ := o.series.peak(0, u, o.velocity(u, end-u, a[k], a[k+1]), a[k], a[k+1]-a[k])
 			worst = max(worst, share(top, bound))
 		}
 	}

@@ -24,15 +24,15 @@
 // How it works. Oscillators march in the lanes of vectors (package kernel). Time
 // is counted in sampling steps and acceleration in a power of two near its peak,
 // so that no coefficient depends on units. An oscillator whose period is long
-// against the step marches as a second-order difference equation (type slow), or
-// many steps at once (type stride); one whose period is short as the free
-// vibration left over when the straight-line particular solution of each step is
-// taken away (type fast). All keep, per block of steps, the starting state and
-// one maximum, from which a bound on |u| within the block follows. Blocks whose
-// bound exceeds the best |u| known are marched again with every step kept. In the
-// steps whose own bound exceeds it the turning points are found on the Taylor
-// series of u (type series), which converges to rounding error within a few
-// terms.
+// against the step marches as a second-order difference equation (type slow), of
+// the response to impulses (train.go), or many steps at once (type stride); one
+// whose period is short as the free vibration left over when the straight-line
+// particular solution of each step is taken away (type fast). All keep, per block
+// of steps, the starting state and one maximum, from which a bound on |u| within
+// the block follows. Blocks whose bound exceeds the best |u| known are marched
+// again, a block to a lane, with every step kept (type visits). In the steps whose
+// own bound exceeds it the turning points are found on the Taylor series of u
+// (type series), which converges to rounding error within a few terms.
 //
 // Start at NewSolver and Solver.SD; Grid is the list of oscillators that a
 // database is built on; Peaks gives the limits of D and A at long and short

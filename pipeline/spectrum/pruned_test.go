@@ -79,7 +79,6 @@ func enterAll(o slow, a []float64) float64 {
 		g.add(m, 0, b)
 		g.visit(m, false)
 	}
-	end := &m.marks[m.blocks()]
-	last := o.ending(m, state{end.X[0], end.Y[0]})
+	last := g.last(m, 0)
 	return math.Ldexp(o.ringing.peak(m.best[0], last.x, last.y/o.phase), m.exponent)
 }

@@ -29,6 +29,8 @@ type difference struct {
 	loss, stiffness float64
 	middle, oldest  float64
 	scale           float64
+	// pole is 1 − loss − stiffness, rounded once.
+	pole float64
 }
 
 // responses are the exact responses at the end of one step, time in steps, of
@@ -134,6 +136,7 @@ func (r *responses) difference() difference {
 	oldest := r.impulse.mul(r.step.sub(r.impulse)).add(slope.mul(r.step.sub(r.ramp)))
 	return difference{
 		loss:      loss.hi,
+		pole:      double{1, 0}.sub(loss).sub(stiffness).hi,
 		stiffness: stiffness.hi,
 		middle:    -middle.hi / r.ramp.hi,
 		oldest:    -oldest.hi / r.ramp.hi,

@@ -69,17 +69,7 @@ func everyOf(phase, ground, d float64) int {
 func (g *slowGroup) limitPair(r *rotation) {
 	m := r.pair[0]
 	for l := range g.members {
-		o := &g.members[l]
-		floor := r.lane[l].floor
-		if g.stride != nil {
-			over := float64(o.phase * float64(strides[g.level]))
-			m.screen.Limit[l] = float64(floor * strideBound(over, o.damping))
-			m.screen.First[l] = 1
-			continue
-		}
-		scale := math.Abs(o.eq.scale)
-		m.screen.Limit[l] = floor / float64(o.growth*scale)
-		m.screen.First[l] = o.reach / scale
+		m.screen.Limit[l], m.screen.First[l] = g.limitOf(l, r.lane[l].floor)
 	}
 }
 
@@ -89,10 +79,10 @@ func (g *slowGroup) areSquares() bool { return false }
 // traceBoth marches a block of both motions again, for the lanes flagged, and
 // returns the first sample and their number.
 func (g *slowGroup) traceBoth(r *rotation, b int, flags uint32) (from, rows int) {
-	from, to := g.samples(r.pair[0], b)
+	from, to := r.pair[0].block(b)
 	rows = to - from + 1
 	for _, m := range r.pair {
-		g.trace(m, b, from, m.rows[:rows], flags)
+		g.trace(m, b, m.rows[:rows], flags)
 	}
 	return from, rows
 }
@@ -112,9 +102,6 @@ func (g *slowGroup) gather(r *rotation, b int, flags uint32) {
 	from, rows := g.traceBoth(r, b, flags)
 	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
 	g.setFence(r, flags, r.blockNorms[b].First)
-	if from == 1 {
-		g.gatherFirst(r, flags)
-	}
 	if rows <= blockSteps { // in a block that is not whole pieces are steps
 		kernel.ScreenFence(r.fence, x, y, 1, rowFlags, flags)
 		g.gatherPieces(r, from, rows, 1, flags)
@@ -203,14 +190,4 @@ func (g *slowGroup) gatherStep(r *rotation, l, sample, k int) {
 		both[i] = groundedStep{u: u, v: o.velocity(u, end-u, a, next), a: a, next: next}
 	}
 	r.lane[l].gatherStep(sample, both[0], both[1], r.stepNorms[sample].First)
-}
-
-// gatherFirst collects the step before the first of a march of steps.
-func (g *slowGroup) gatherFirst(r *rotation, flags uint32) {
-	for ; flags != 0; flags &= flags - 1 {
-		lane := &r.lane[bits.TrailingZeros32(flags)]
-		x, y := r.pair[0].a, r.pair[1].a
-		first, second := groundedStep{a: x[0], next: x[1]}, groundedStep{a: y[0], next: y[1]}
-		lane.gatherParts(0, newParts(first, lane.cuts), newParts(second, lane.cuts), r.stepNorms[0].First)
-	}
 }

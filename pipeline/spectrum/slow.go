@@ -3,8 +3,8 @@ package spectrum
 import "math"
 
 // slow is an oscillator whose period is long against the step. It marches on
-// the difference equation, with displacement in units of its scale. The march
-// of a block keeps the greatest sampled |u|.
+// the difference equation or its train (train.go), with displacement in units of
+// its scale.
 type slow struct {
 	index   int
 	phase   float64

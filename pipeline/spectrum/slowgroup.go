@@ -12,10 +12,11 @@ import (
 //
 // With a stride, the marks of all blocks but the last hold displacement and
 // velocity, and their peaks |u| between strides; the last block is marched step
-// by step.
+// by step. With a train, marks are those of train.go.
 type slowGroup struct {
 	members []slow
 	eq      *kernel.Slow
+	train   *kernel.Train      // nil for Newmark's methods
 	screen  *kernel.StepScreen // all but Best, per unit of the ground acceleration
 	factors []kernel.Row       // of series, as for kernel.Turn
 	stride  *kernel.Stride     // nil for steps
@@ -33,6 +34,9 @@ func newSlowGroups(list []slow) []slowGroup {
 			g.eq.Decay[l], g.eq.Stiffness[l] = 1-q.loss, q.stiffness
 			g.eq.Middle[l], g.eq.Oldest[l] = q.middle, q.oldest
 		}
+		if list[0].tail == 0 {
+			g.train = newTrain(g.members)
+		}
 		g.screenSteps()
 		g.factors = factorsOf(g.members)
 		groups, list = append(groups, g), list[n:]
@@ -45,7 +49,7 @@ func newStrideGroups(list []slow, level int) []slowGroup {
 	groups := newSlowGroups(list)
 	for i := range groups {
 		g := &groups[i]
-		g.stride, g.level = new(kernel.Stride), level
+		g.train, g.stride, g.level = nil, new(kernel.Stride), level
 		for l := range g.members {
 			o := &g.members[l]
 			setStride(g.stride, l, o.phase, o.damping, strides[level])
@@ -57,10 +61,13 @@ func newStrideGroups(list []slow, level int) []slowGroup {
 // live flags the lanes of members.
 func (g *slowGroup) live() uint32 { return ^uint32(0) >> (lanes - len(g.members)) }
 
-// unit returns the unit of the peaks of a lane.
+// unit returns the unit of the peaks of a lane that are samples of u, 0 if none is.
 func (g *slowGroup) unit(l int) float64 {
-	if g.stride != nil {
+	switch {
+	case g.stride != nil:
 		return 1
+	case g.train != nil:
+		return 0
 	}
 	return math.Abs(g.members[l].eq.scale)
 }
@@ -84,12 +91,21 @@ func (g *slowGroup) solve(dst []float64, m *motion) {
 }
 
 // last returns displacement and velocity at the last sample.
-func (g *slowGroup) last(m *motion, l int) state { return g.members[l].ending(m, m.final(l)) }
+func (g *slowGroup) last(m *motion, l int) state {
+	if g.train != nil {
+		return g.trainEnd(m, l)
+	}
+	return g.members[l].ending(m, m.final(l))
+}
 
 // march sets the marks of all blocks.
 func (g *slowGroup) march(m *motion) {
-	if g.stride != nil {
+	switch {
+	case g.stride != nil:
 		g.marchStrides(m)
+		return
+	case g.train != nil:
+		g.marchTrain(m)
 		return
 	}
 	start := &m.marks[0]
@@ -113,7 +129,10 @@ func (g *slowGroup) marchStrides(m *motion) {
 	}
 	mark := &m.marks[last]
 	from, to := m.block(last)
-	g.restart(m, last, ^uint32(0))
+	m.start.X, m.start.Y = kernel.Row{}, kernel.Row{}
+	for l := range g.members {
+		m.start.X[l], m.start.Y[l] = g.members[l].restart(mark.X[l], mark.Y[l], m.a[from], m.a[from+1])
+	}
 	kernel.MarchSlow(g.eq, m.start, &m.marks[last+1], m.a[from:to+1])
 	for l := range g.members {
 		scale := math.Abs(g.members[l].eq.scale)
@@ -124,19 +143,6 @@ func (g *slowGroup) marchStrides(m *motion) {
 	}
 }
 
-// restart sets start to the state of the difference equation a step into a
-// block, from displacement and velocity at its start, for the lanes flagged.
-func (g *slowGroup) restart(m *motion, b int, flags uint32) {
-	from, _ := m.block(b)
-	a, next := m.a[from], m.a[from+1]
-	mark := &m.marks[b]
-	m.start.X, m.start.Y = kernel.Row{}, kernel.Row{}
-	for left := flags & g.live(); left != 0; left &= left - 1 {
-		l := bits.TrailingZeros32(left)
-		m.start.X[l], m.start.Y[l] = g.members[l].restart(mark.X[l], mark.Y[l], a, next)
-	}
-}
-
 // restart returns the state of the difference equation after a step from
 // displacement u and velocity v, under ground acceleration a and next.
 func (o *slow) restart(u, v, a, next float64) (x, y float64) {
@@ -144,7 +150,7 @@ func (o *slow) restart(u, v, a, next float64) (x, y float64) {
 	return (u + change) / o.eq.scale, change / o.eq.scale
 }
 
-// sampled sets best to the greatest |u| at samples.
+// sampled sets best to the greatest |u| at samples, if peaks are such.
 func (g *slowGroup) sampled(m *motion) {
 	m.findTops()
 	for l := range g.members {
@@ -190,21 +196,22 @@ func (g *slowGroup) topBlock(m *motion, l int) int {
 	return b
 }
 
-// limit sets the screen so that a greatest sampled |u| passes if the bound of
-// func bounds, or of func strideBound, exceeds best.
+// limit sets the screen so that a peak passes if by its bound |u| can exceed best.
 func (g *slowGroup) limit(m *motion) {
 	for l := range g.members {
-		o := &g.members[l]
-		if g.stride != nil {
-			over := float64(o.phase * float64(strides[g.level]))
-			m.screen.Limit[l] = float64(m.best[l] * strideBound(over, o.damping))
-			m.screen.First[l] = 1
-			continue
-		}
-		scale := math.Abs(o.eq.scale)
-		m.screen.Limit[l] = m.best[l] / float64(o.growth*scale)
-		m.screen.First[l] = o.reach / scale
+		m.screen.Limit[l], m.screen.First[l] = g.limitOf(l, m.best[l])
 	}
+}
+
+// limitOf returns the limit of a peak beyond which, by func strideBound or
+// trainBound, |u| can exceed best, and what of a block's line comes off it.
+func (g *slowGroup) limitOf(l int, best float64) (limit, first float64) {
+	o := &g.members[l]
+	if g.stride != nil {
+		over := float64(o.phase * float64(strides[g.level]))
+		return float64(best * strideBound(over, o.damping)), 1
+	}
+	return best / o.trainBound(), 0
 }
 
 // screenSteps sets what screens steps but best: |ü| within a step is at most M
@@ -229,29 +236,26 @@ func curvature(linear, square float64) (force, curve, slope float64) {
 	return share, float64(share * square), float64(share * linear)
 }
 
-// samples returns the first and the last sample of a block of which a trace gives
-// u: a march of steps begins at sample 1.
-func (g *slowGroup) samples(m *motion, b int) (from, to int) {
-	from, to = m.block(b)
-	if g.stride == nil {
-		from = max(from, 1)
-	}
-	return from, to
-}
-
-// trace sets rows to u at the samples of a block, of which from is the first,
-// for the lanes flagged.
-func (g *slowGroup) trace(m *motion, b, from int, rows []kernel.Row, flags uint32) {
-	if g.stride == nil {
-		rows[0] = m.marks[b].X
-		kernel.TraceSlow(g.eq, &m.marks[b], m.a[from-1:from+len(rows)], rows[1:], flags)
-		return
-	}
-	g.restart(m, b, flags)
-	for left := flags; left != 0; left &= left - 1 {
+// trace sets rows to u at the samples of a block, for the lanes flagged.
+func (g *slowGroup) trace(m *motion, b int, rows []kernel.Row, flags uint32) {
+	m.start.X, m.start.Y = kernel.Row{}, kernel.Row{}
+	for left := flags & g.live(); left != 0; left &= left - 1 {
 		l := bits.TrailingZeros32(left)
-		rows[0][l] = m.marks[b].X[l] / g.members[l].eq.scale
+		rows[0][l], m.start.X[l], m.start.Y[l] = g.secondSample(m, l, b)
 	}
 	rows[1] = m.start.X
+	from, _ := m.block(b)
 	kernel.TraceSlow(g.eq, m.start, m.a[from:from+len(rows)], rows[2:], flags)
+}
+
+// secondSample returns u at the first sample of a block, and the state of the
+// difference equation at the second.
+func (g *slowGroup) secondSample(m *motion, l, b int) (first, x, y float64) {
+	from, _ := m.block(b)
+	if g.train != nil {
+		return g.resume(m, l, b, from)
+	}
+	mark, o := &m.marks[b], &g.members[l]
+	x, y = o.restart(mark.X[l], mark.Y[l], m.a[from], m.a[from+1])
+	return mark.X[l] / o.eq.scale, x, y
 }

@@ -38,13 +38,12 @@ func compareStrides(t *testing.T, m *motion, o *slow, level int) {
 	rho := strideBound(o.phase*float64(strides[level]), o.damping)
 	for b := range m.blocks() {
 		from, to := m.block(b)
-		first := max(from, 1)
-		u := exact.rows[:to-first+1]
-		steps.trace(exact, b, first, u, 1)
+		u := exact.rows[:to-from+1]
+		steps.trace(exact, b, u, 1)
 		top := 0.0
 		for k := range len(u) - 1 {
 			x, end := o.eq.scale*u[k][0], o.eq.scale*u[k+1][0]
-			peak, _, _ := o.series.peak(0, x, o.velocity(x, end-x, m.a[first+k], m.a[first+k+1]), m.a[first+k], m.a[first+k+1]-m.a[first+k])
+			peak, _, _ := o.series.peak(0, x, o.velocity(x, end-x, m.a[from+k], m.a[from+k+1]), m.a[from+k], m.a[from+k+1]-m.a[from+k])
 			top = max(top, peak)
 		}
 		if bound := (m.marks[b].Peak[0] + m.strides[level].lines[b].First) / rho; top > bound*(1+1e-12) {

@@ -77,24 +77,6 @@ func (g *slowGroup) add(m *motion, l, b int) {
 	m.rows[0][i], v.start.X[i], v.start.Y[i] = g.secondSample(m, l, b)
 }
 
-// secondSample returns u at the first sample of a block, and the state of the
-// difference equation at the second.
-func (g *slowGroup) secondSample(m *motion, l, b int) (first, x, y float64) {
-	from, _ := m.block(b)
-	mark, o := &m.marks[b], &g.members[l]
-	switch {
-	case g.stride != nil:
-		x, y = o.restart(mark.X[l], mark.Y[l], m.a[from], m.a[from+1])
-		return mark.X[l] / o.eq.scale, x, y
-	case b == 0: // at rest at sample 0
-		return 0, mark.X[l], mark.Y[l]
-	}
-	q, u := g.eq, mark.X[l]
-	ground := math.FMA(q.Oldest[l], m.a[from-1], math.FMA(q.Middle[l], m.a[from], m.a[from+1]))
-	y = math.FMA(-q.Stiffness[l], u, math.FMA(mark.Y[l], q.Decay[l], ground))
-	return u, u + y, y
-}
-
 // visit marches the blocks that were added again and looks into the steps that can
 // beat best: first into that beside the greatest sample, if they are those of the
 // members' greatest samples in order.

@@ -14,6 +14,7 @@ type level struct {
 	name          string
 	marchSlow     func(q *Slow, from, to *Mark, ground *float64, steps int)
 	traceSlow     func(q *Slow, from *Mark, ground *float64, steps int, rows *Row, want uint32)
+	marchTrain    func(q *Train, from, to *Mark, ground *float64, steps int)
 	marchFast     func(q *Fast, from, to *Mark, ground *float64, steps int)
 	traceFast     func(q *Fast, from *Mark, ground *float64, steps int, rows *Mark, want uint32)
 	screen        func(s *Screen, values *float64, stride int, lines *Line, flags *uint32, n int)
@@ -42,6 +43,7 @@ var portable = level{
 	name:          Portable,
 	marchSlow:     marchSlowGeneric,
 	traceSlow:     traceSlowGeneric,
+	marchTrain:    marchTrainGeneric,
 	marchFast:     marchFastGeneric,
 	traceFast:     traceFastGeneric,
 	screen:        screenGeneric,

@@ -45,6 +45,38 @@ func slowFour(q *Slow, from, to *Mark, a []float64, l int) {
 	from.Peak[l+2], from.Peak[l+3] = math.Float64frombits(p2>>1), math.Float64frombits(p3>>1)
 }
 
+func marchTrainGeneric(q *Train, from, to *Mark, ground *float64, steps int) {
+	a := unsafe.Slice(ground, steps+trainBeyond)
+	for l := 0; l < Lanes; l += side {
+		x, w := [side]float64(from.X[l:]), [side]float64(from.Y[l:])
+		peak := [side]uint64{magnitude(x[0]), magnitude(x[1]), magnitude(x[2]), magnitude(x[3])}
+		trainFour(q, &x, &w, &peak, a[:steps], l)
+		copy(to.X[l:], x[:])
+		copy(to.Y[l:], w[:])
+		trainFour(q, &x, &w, &peak, a[steps:], l)
+		for i, p := range peak {
+			from.Peak[l+i] = math.Float64frombits(p >> 1)
+		}
+	}
+}
+
+func trainFour(q *Train, x, w *[side]float64, peak *[side]uint64, a []float64, l int) {
+	d, s := (*[side]float64)(q.Decay[l:]), (*[side]float64)(q.Stiffness[l:])
+	x0, x1, x2, x3 := x[0], x[1], x[2], x[3]
+	w0, w1, w2, w3 := w[0], w[1], w[2], w[3]
+	p0, p1, p2, p3 := peak[0], peak[1], peak[2], peak[3]
+	for _, a := range a {
+		x0, w0 = x0+w0, math.FMA(d[0], w0, math.FMA(-s[0], x0, a))
+		x1, w1 = x1+w1, math.FMA(d[1], w1, math.FMA(-s[1], x1, a))
+		x2, w2 = x2+w2, math.FMA(d[2], w2, math.FMA(-s[2], x2, a))
+		x3, w3 = x3+w3, math.FMA(d[3], w3, math.FMA(-s[3], x3, a))
+		p0, p1 = max(p0, magnitude(x0)), max(p1, magnitude(x1))
+		p2, p3 = max(p2, magnitude(x2)), max(p3, magnitude(x3))
+	}
+	*x, *w = [side]float64{x0, x1, x2, x3}, [side]float64{w0, w1, w2, w3}
+	*peak = [side]uint64{p0, p1, p2, p3}
+}
+
 // magnitude orders finite numbers by their absolute value.
 func magnitude(x float64) uint64 { return math.Float64bits(x) << 1 }
 

@@ -74,10 +74,13 @@ func (c *testCase) runPlaced(p *placing) *placed {
 	for i := range lines {
 		lines[i] = Line{0.1 * float64(i%5), 0.2 * float64(i%3)}
 	}
-	from := [3]*Mark{one(p, c.start), one(p, c.start), one(p, c.start)}
-	to := [3]*Mark{one(p, Mark{}), one(p, Mark{}), one(p, Mark{})}
+	from := [4]*Mark{one(p, c.start), one(p, c.start), one(p, c.start), one(p, c.start)}
+	to := [4]*Mark{one(p, Mark{}), one(p, Mark{}), one(p, Mark{}), one(p, Mark{})}
 	MarchSlow(slow, from[0], to[0], ground)
 	MarchFast(fast, from[1], to[1], ground)
+	if n >= trainBeyond {
+		MarchTrain(one(p, c.train), from[3], to[3], ground)
+	}
 	rows, marks := place[Row](p, steps), place[Mark](p, n)
 	TraceSlow(slow, from[0], ground, rows, c.want)
 	TraceSlow(slow, from[0], ground, rows, ^uint32(0))
@@ -95,7 +98,7 @@ func (c *testCase) runPlaced(p *placing) *placed {
 	top, visit := one(p, Row{}), newVisit(c).placed(p)
 	GreatestPeaks(top, visit.at, marks)
 	return &placed{
-		marks: append(marks, *from[0], *from[1], *from[2], *to[0], *to[1], *to[2]),
+		marks: append(marks, *from[0], *from[1], *from[2], *from[3], *to[0], *to[1], *to[2], *to[3]),
 		rows:  append(append(rows, *top, *visit.at), visit.run(ground)...), inputs: inputs, flags: flags,
 	}
 }

@@ -17,6 +17,30 @@ type Row [Lanes]float64
 // with a⁻, a, a' successive samples of the ground.
 type Slow struct{ Decay, Stiffness, Middle, Oldest Row }
 
+// Train holds the coefficients of the response to a train of impulses, one number a
+// for each step:
+//
+//	x' = x + w
+//	w' = Decay·w + a − Stiffness·x
+type Train struct{ Decay, Stiffness Row }
+
+// trainBeyond is the number of steps beyond the end that peaks of MarchTrain take in.
+const trainBeyond = 2
+
+// MarchTrain takes oscillators from the state from.X, from.Y = (x, w) through a step
+// for each number of a but the last two, and sets to.X and to.Y to the state then and
+// from.Peak to the greatest |x|, that of the start and of the two steps beyond
+// included. to may be from. It panics without these two.
+//
+// If states or ground are not finite, states follow IEEE 754 and peaks are
+// unspecified.
+func MarchTrain(q *Train, from, to *Mark, a []float64) {
+	if len(a) < trainBeyond {
+		panic("kernel: no steps beyond the end")
+	}
+	current.marchTrain(q, from, to, &a[0], len(a)-trainBeyond)
+}
+
 // Fast holds the coefficients of the rotation
 //
 //	y' = YY·y + YZ·z − Jump·b

@@ -14,6 +14,11 @@ func marchSlowAVX2(q *float64, from *float64, to *float64, ground *float64, step
 //go:noescape
 func traceSlowAVX2(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
 
+// marchTrainAVX2 is marchTrainGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func marchTrainAVX2(q *float64, from *float64, to *float64, ground *float64, steps int)
+
 // marchFastAVX2 is marchFastGeneric for vectors of 4 lanes.
 //
 //go:noescape
@@ -133,6 +138,11 @@ func marchSlowAVX512(q *float64, from *float64, to *float64, ground *float64, st
 //
 //go:noescape
 func traceSlowAVX512(q *float64, from *float64, ground *float64, steps int, rows *float64, want uint32)
+
+// marchTrainAVX512 is marchTrainGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func marchTrainAVX512(q *float64, from *float64, to *float64, ground *float64, steps int)
 
 // marchFastAVX512 is marchFastGeneric for vectors of 8 lanes.
 //

@@ -13,6 +13,7 @@ func BenchmarkMarch(b *testing.B) {
 		march func(k int)
 	}{
 		{"slow", func(k int) { MarchSlow(&c.slow, &marks[k], &marks[k+1], c.ground[k*chunk:min((k+1)*chunk+2, n)]) }},
+		{"train", func(k int) { MarchTrain(&c.train, &marks[k], &marks[k+1], c.ground[k*chunk:min((k+1)*chunk+2, n)]) }},
 		{"fast", func(k int) { MarchFast(&c.fast, &marks[k], &marks[k+1], c.ground[k*chunk:min((k+1)*chunk, n)]) }},
 	} {
 		for _, name := range Names() {

@@ -26,6 +26,7 @@ func use(t testing.TB, name string) {
 // finds one that only reads it, or writes beyond anything.
 type testCase struct {
 	slow   Slow
+	train  Train
 	fast   Fast
 	start  Mark
 	screen Screen
@@ -46,6 +47,7 @@ func newCase(seed uint64, n int) *testCase {
 		phase := math.Exp(-6 * r.Float64())
 		damping := max(0, 0.3*r.Float64()-0.05)
 		c.slow.Decay[l], c.slow.Stiffness[l] = 1-2*damping*phase, phase*phase
+		c.train.Decay[l], c.train.Stiffness[l] = c.slow.Decay[l]-c.slow.Stiffness[l], c.slow.Stiffness[l]
 		c.slow.Middle[l], c.slow.Oldest[l] = 4-r.Float64(), 1-0.3*r.Float64()
 		decay, angle := math.Exp(-damping), 6*r.Float64()
 		c.fast.YY[l], c.fast.YZ[l] = decay*math.Cos(angle), decay*math.Sin(angle)
@@ -101,6 +103,7 @@ func guarded(values []float64, offset int) []float64 {
 type outcome struct {
 	slow, slowEnd, fast, fastEnd Mark
 	stride, strideEnd            Mark
+	train, trainEnd              Mark
 	inputs                       []Input
 	few                          []Row // traces of the lanes asked for only
 	rows                         []Row
@@ -111,7 +114,7 @@ type outcome struct {
 }
 
 func (c *testCase) run() *outcome {
-	o := &outcome{slow: c.start, fast: c.start, stride: c.start}
+	o := &outcome{slow: c.start, fast: c.start, stride: c.start, train: c.start}
 	steps := max(len(c.ground)-2, 0)
 	// Guards round what the kernels write.
 	rows, marks := make([]Row, steps+2), make([]Mark, len(c.ground)+2)
@@ -125,6 +128,9 @@ func (c *testCase) run() *outcome {
 	}
 	MarchSlow(&c.slow, &o.slow, &o.slowEnd, c.ground)
 	MarchFast(&c.fast, &o.fast, &o.fastEnd, c.ground)
+	if len(c.ground) >= trainBeyond {
+		MarchTrain(&c.train, &o.train, &o.trainEnd, c.ground)
+	}
 	TraceSlow(&c.slow, &c.start, c.ground, rows[1:steps+1], ^uint32(0))
 	TraceSlow(&c.slow, &c.start, c.ground, some[1:steps+1], c.want)
 	TraceFast(&c.fast, &c.start, c.ground, marks[1:len(c.ground)+1], ^uint32(0))
@@ -203,6 +209,8 @@ func (o *outcome) compare(t *testing.T, label string, want *outcome) {
 	}
 	check("fast end x", &o.fastEnd.X, &want.fastEnd.X)
 	check("fast end y", &o.fastEnd.Y, &want.fastEnd.Y)
+	check("train end x", &o.trainEnd.X, &want.trainEnd.X)
+	check("train end y", &o.trainEnd.Y, &want.trainEnd.Y)
 	check("stride end x", &o.strideEnd.X, &want.strideEnd.X)
 	check("stride end y", &o.strideEnd.Y, &want.strideEnd.Y)
 	for i := range want.inputs {
@@ -213,6 +221,7 @@ func (o *outcome) compare(t *testing.T, label string, want *outcome) {
 		}
 	}
 	if finite {
+		check("train peak", &o.train.Peak, &want.train.Peak)
 		check("stride peak", &o.stride.Peak, &want.stride.Peak)
 		check("slow peak", &o.slow.Peak, &want.slow.Peak)
 		check("fast peak", &o.fast.Peak, &want.fast.Peak)
@@ -329,6 +338,16 @@ func TestMarchIsItsDefinition(t *testing.T) {
 		near("slow u", l, o.slowEnd.X[l], u)
 		near("slow w", l, o.slowEnd.Y[l], w)
 		near("slow peak", l, o.slow.Peak[l], peak)
+		x, v, highest := c.start.X[l], c.start.Y[l], math.Abs(c.start.X[l])
+		for i, a := range c.ground {
+			if i == len(c.ground)-trainBeyond {
+				near("train x", l, o.trainEnd.X[l], x)
+				near("train w", l, o.trainEnd.Y[l], v)
+			}
+			x, v = x+v, c.train.Decay[l]*v+a-c.train.Stiffness[l]*x
+			highest = max(highest, math.Abs(x))
+		}
+		near("train peak", l, o.train.Peak[l], highest)
 		f := &c.fast
 		y, z, top := c.start.X[l], c.start.Y[l], 0.0
 		for i, b := range c.ground {

@@ -13,6 +13,7 @@ func vectorLevels() []level {
 			name:          AVX512,
 			marchSlow:     slowMarch(marchSlowAVX512),
 			traceSlow:     slowTrace(traceSlowAVX512),
+			marchTrain:    trainMarch(marchTrainAVX512),
 			marchFast:     fastMarch(marchFastAVX512),
 			traceFast:     fastTrace(traceFastAVX512),
 			screen:        screening(screenAVX512),
@@ -42,6 +43,7 @@ func vectorLevels() []level {
 			name:          AVX2,
 			marchSlow:     slowMarch(marchSlowAVX2),
 			traceSlow:     slowTrace(traceSlowAVX2),
+			marchTrain:    trainMarch(marchTrainAVX2),
 			marchFast:     fastMarch(marchFastAVX2),
 			traceFast:     fastTrace(traceFastAVX2),
 			screen:        screening(screenAVX2),
@@ -85,6 +87,12 @@ func slowMarch(f marching) func(*Slow, *Mark, *Mark, *float64, int) {
 func slowTrace(f tracing) func(*Slow, *Mark, *float64, int, *Row, uint32) {
 	return func(q *Slow, from *Mark, ground *float64, steps int, rows *Row, want uint32) {
 		f(&q.Decay[0], &from.X[0], ground, steps, &rows[0], want)
+	}
+}
+
+func trainMarch(f marching) func(*Train, *Mark, *Mark, *float64, int) {
+	return func(q *Train, from, to *Mark, ground *float64, steps int) {
+		f(&q.Decay[0], &from.X[0], &to.X[0], ground, steps)
 	}
 }
 

@@ -235,6 +235,7 @@ func TestVisitRefuses(t *testing.T) {
 		"rows beyond the samples":       func() { Gather(rows, a, &[Lanes]int{3: 5}) },
 		"rows before the samples":       func() { Gather(rows, a, &[Lanes]int{3: -1}) },
 		"one row too many":              func() { TraceEach(new(Slow), new(Mark), rows, rows[:15]) },
+		"no steps beyond the end":       func() { MarchTrain(new(Train), new(Mark), new(Mark), a[:1]) },
 		"too few terms":                 func() { Turn(new(Turning), rows[:4]) },
 		"too many terms":                func() { Turn(new(Turning), make([]Row, MaxTerms+1)) },
 	} {

@@ -41,6 +41,7 @@ func main() {
 	for _, l := range levels {
 		l.marchSlow(false)
 		l.marchSlow(true)
+		l.marchTrain()
 		l.marchFast(false)
 		l.marchFast(true)
 		l.screen(false)
@@ -219,6 +220,7 @@ func (in input) cursors() (ground, steps, rows reg.Register) {
 // Rows of the blocks, in the order of their fields.
 const (
 	slowDecay, slowStiffness, slowMiddle, slowOldest = 0, 1, 2, 3
+	trainDecay, trainStiffness                       = 0, 1
 	fastYY, fastYZ, fastZY, fastZZ, fastJump         = 0, 1, 2, 3, 4
 	markX, markY, markPeak                           = 0, 1, 2
 )
@@ -282,6 +284,49 @@ func (l level) leave(in input, offset int, x, y, peak []reg.VecVirtual) {
 		VMOVUPD(x[v], l.at(in.to, markX, offset, v))
 		VMOVUPD(y[v], l.at(in.to, markY, offset, v))
 	}
+}
+
+// marchTrain goes on for two steps when the state at the end is stored.
+func (l level) marchTrain() {
+	in := l.open("Train", false)
+	mask := l.absolute()
+	l.passes(func(offset, pass int) {
+		ground, steps, _ := in.cursors()
+		x, w, peak := l.some(), l.some(), l.some()
+		for v := range x {
+			VMOVUPD(l.at(in.from, markX, offset, v), x[v])
+			VMOVUPD(l.at(in.from, markY, offset, v), w[v])
+			l.and(mask, x[v], peak[v])
+		}
+		decay := l.coefficient(in.q, trainDecay, offset, l.keep)
+		stiffness := l.coefficient(in.q, trainStiffness, offset, l.keep)
+		a := l.vector()
+		step := func() {
+			VBROADCASTSD(operand.Mem{Base: ground}, a)
+			for v := range x {
+				t := l.vector()
+				VMOVAPD(a, t)
+				VFNMADD231PD(stiffness[v], x[v], t)
+				VADDPD(w[v], x[v], x[v])
+				VFMADD132PD(decay[v], t, w[v])
+				l.and(mask, x[v], t)
+				VMAXPD(t, peak[v], peak[v])
+			}
+		}
+		in.loop(fmt.Sprintf("step%d", pass), ground, steps, nil, step)
+		for v := range x {
+			VMOVUPD(x[v], l.at(in.to, markX, offset, v))
+			VMOVUPD(w[v], l.at(in.to, markY, offset, v))
+		}
+		step()
+		ADDQ(operand.Imm(8), ground)
+		step()
+		for v := range x {
+			VMOVUPD(peak[v], l.at(in.from, markPeak, offset, v))
+		}
+	})
+	VZEROUPPER()
+	RET()
 }
 
 func (l level) marchFast(trace bool) {
