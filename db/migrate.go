@@ -52,20 +52,20 @@ func readSteps(files fs.FS) ([]step, error) {
 
 // migrate applies the missing steps, each in one transaction with its mark. A
 // second process that waits for the lock finds the work done.
-func migrate(ctx context.Context, write *sql.DB) error {
+func migrate(ctx context.Context, write *sql.DB, solver string) error {
 	all, err := steps()
 	if err != nil {
 		return err
 	}
 	for {
-		done, err := applyNext(ctx, write, all)
+		done, err := applyNext(ctx, write, all, solver)
 		if err != nil || done {
 			return err
 		}
 	}
 }
 
-func applyNext(ctx context.Context, write *sql.DB, all []step) (done bool, err error) {
+func applyNext(ctx context.Context, write *sql.DB, all []step, solver string) (done bool, err error) {
 	tx, err := write.BeginTx(ctx, nil)
 	if err != nil {
 		return false, err
@@ -81,11 +81,28 @@ func applyNext(ctx context.Context, write *sql.DB, all []step) (done bool, err e
 	if len(applied) == len(all) {
 		return true, nil
 	}
+	if err := checkUsable(ctx, tx, len(applied), solver); err != nil {
+		return false, err
+	}
 	next := all[len(applied)]
 	if err := applyStep(ctx, tx, next); err != nil {
 		return false, fmt.Errorf("migration %s: %w", next.name, err)
 	}
 	return false, tx.Commit()
+}
+
+// checkUsable refuses a store that this program could not use once it is brought
+// up to date: the program that made it still can.
+func checkUsable(ctx context.Context, tx *sql.Tx, applied int, solver string) error {
+	if applied == 0 {
+		return nil
+	}
+	var g Generation
+	err := tx.QueryRowContext(ctx, `SELECT solver FROM generation WHERE state = 'published'`).Scan(&g.Solver)
+	if errors.Is(err, sql.ErrNoRows) {
+		return nil
+	}
+	return errors.Join(err, g.CheckSolver(solver))
 }
 
 func applyStep(ctx context.Context, tx *sql.Tx, s step) error {

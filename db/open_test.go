@@ -49,15 +49,15 @@ func TestEveryConnectionHasThePragmas(t *testing.T) {
 
 func TestOpenRefuses(t *testing.T) {
 	dir := t.TempDir()
-	if _, err := Open(t.Context(), filepath.Join(dir, "none.db")); !errors.Is(err, ErrNoStore) {
+	if _, err := Open(t.Context(), filepath.Join(dir, "none.db"), testSolver); !errors.Is(err, ErrNoStore) {
 		t.Errorf("missing store: %v, want ErrNoStore", err)
 	}
 	junk := filepath.Join(dir, "junk.db")
 	if err := os.WriteFile(junk, []byte(strings.Repeat("not a database ", 100)), 0o644); err != nil {
 		t.Fatal(err)
 	}
-	for name, open := range map[string]func(context.Context, string) (*Store, error){"Open": Open, "Create": Create} {
-		if _, err := open(t.Context(), junk); err == nil || !strings.Contains(err.Error(), "not a swaybook store") {
+	for name, open := range map[string]func(context.Context, string, string) (*Store, error){"Open": Open, "Create": Create} {
+		if _, err := open(t.Context(), junk, testSolver); err == nil || !strings.Contains(err.Error(), "not a swaybook store") {
 			t.Errorf("%s of junk: %v", name, err)
 		}
 	}
@@ -68,15 +68,15 @@ func TestOpenRefuses(t *testing.T) {
 	}
 	raw.Close()
 	before := must(os.ReadFile(foreign))
-	for name, open := range map[string]func(context.Context, string) (*Store, error){"Open": Open, "Create": Create} {
-		if _, err := open(t.Context(), foreign); err == nil || !strings.Contains(err.Error(), "another program") {
+	for name, open := range map[string]func(context.Context, string, string) (*Store, error){"Open": Open, "Create": Create} {
+		if _, err := open(t.Context(), foreign, testSolver); err == nil || !strings.Contains(err.Error(), "another program") {
 			t.Errorf("%s of a foreign database: %v", name, err)
 		}
 	}
 	if !bytes.Equal(before, must(os.ReadFile(foreign))) {
 		t.Error("a foreign database was changed")
 	}
-	if _, err := Create(t.Context(), filepath.Join(dir, "no", "such", "folder.db")); err == nil {
+	if _, err := Create(t.Context(), filepath.Join(dir, "no", "such", "folder.db"), testSolver); err == nil {
 		t.Error("no error for a missing folder")
 	}
 }
@@ -92,15 +92,15 @@ func TestOpenRefusesANewerOrEditedStore(t *testing.T) {
 	for _, tt := range tests {
 		t.Run(tt.name, func(t *testing.T) {
 			path := filepath.Join(t.TempDir(), "s.db")
-			s := must(Create(t.Context(), path))
+			s := must(Create(t.Context(), path, testSolver))
 			if _, err := s.write.Exec(tt.change); err != nil {
 				t.Fatal(err)
 			}
 			s.Close()
-			if _, err := Open(t.Context(), path); !errors.Is(err, tt.want) {
+			if _, err := Open(t.Context(), path, testSolver); !errors.Is(err, tt.want) {
 				t.Errorf("Open: %v, want %v", err, tt.want)
 			}
-			if _, err := Create(t.Context(), path); !errors.Is(err, tt.want) {
+			if _, err := Create(t.Context(), path, testSolver); !errors.Is(err, tt.want) {
 				t.Errorf("Create: %v, want %v", err, tt.want)
 			}
 		})
@@ -123,7 +123,7 @@ func TestOpenOfNothing(t *testing.T) {
 	if err := os.WriteFile(path, nil, 0o644); err != nil {
 		t.Fatal(err)
 	}
-	if _, err := Open(t.Context(), path); !errors.Is(err, ErrNoStore) {
+	if _, err := Open(t.Context(), path, testSolver); !errors.Is(err, ErrNoStore) {
 		t.Errorf("Open of an empty file = %v, want ErrNoStore", err)
 	}
 	if info, err := os.Stat(path); err != nil || info.Size() != 0 {
@@ -141,7 +141,7 @@ func TestOpenInAReadOnlyFolder(t *testing.T) {
 	}
 	dir := t.TempDir()
 	path := filepath.Join(dir, "s.db")
-	if err := must(Create(t.Context(), path)).Close(); err != nil {
+	if err := must(Create(t.Context(), path, testSolver)).Close(); err != nil {
 		t.Fatal(err)
 	}
 	for _, c := range []struct {
@@ -153,7 +153,7 @@ func TestOpenInAReadOnlyFolder(t *testing.T) {
 		}
 	}
 	t.Cleanup(func() { os.Chmod(dir, 0o755) })
-	s, err := Open(t.Context(), path)
+	s, err := Open(t.Context(), path, testSolver)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -170,7 +170,7 @@ func TestCreateAtTheSameTime(t *testing.T) {
 		var group errgroup.Group
 		for range 4 {
 			group.Go(func() error {
-				s, err := Create(t.Context(), path)
+				s, err := Create(t.Context(), path, testSolver)
 				if err != nil {
 					return err
 				}
@@ -179,6 +179,30 @@ func TestCreateAtTheSameTime(t *testing.T) {
 		}
 		if err := group.Wait(); err != nil {
 			t.Fatal(err)
+		}
+	}
+}
+
+// A store that this program could not use is left as it is, for the program that
+// can.
+func TestAnotherSolversStoreIsNotMigrated(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "s.db")
+	s := must(Create(t.Context(), path, testSolver))
+	err := s.Update(t.Context(), func(tx *Tx) error {
+		_, err := tx.CreateGeneration(t.Context(), Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, testSolver)
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	// As if the last step were not there yet; it would fail if it were applied.
+	if _, err := s.write.Exec(`DELETE FROM schema_step WHERE number > 1`); err != nil {
+		t.Fatal(err)
+	}
+	s.Close()
+	for name, open := range map[string]func(context.Context, string, string) (*Store, error){"Open": Open, "Create": Create} {
+		if _, err := open(t.Context(), path, "solver 2"); !errors.Is(err, ErrOtherGeneration) {
+			t.Errorf("%s: %v, want %v", name, err, ErrOtherGeneration)
 		}
 	}
 }

@@ -84,6 +84,18 @@ func (t *Tx) State(ctx context.Context, s Statement) (isNew bool, err error) {
 	return true, nil
 }
 
+// Unstate forgets what somebody stated of an attribute, and reports whether there was
+// anything.
+func (t *Tx) Unstate(ctx context.Context, of Subject, attribute, by string) (bool, error) {
+	r, err := t.tx.ExecContext(ctx, `DELETE FROM statement WHERE subject = ? AND subject_id = ? AND attribute = ? AND stated_by = ?`,
+		of.Kind, of.ID, attribute, by)
+	if err != nil {
+		return false, fmt.Errorf("forget statement: %w", err)
+	}
+	n, err := r.RowsAffected()
+	return n > 0, err
+}
+
 // Statements returns what is stated of a subject, by attribute, the value to take
 // first.
 func (t *Tx) Statements(ctx context.Context, of Subject) ([]Statement, error) {
@@ -111,43 +123,48 @@ func statementFields(s *Statement) []any {
 
 // EventKey is an event's identity in the store.
 type EventKey struct {
-	ID        int64
-	Code      string
-	PrimaryID int64 // of the event that stands for it, its own where that is itself
+	ID   int64
+	Code string
 }
 
-// EventsWithin returns the events whose origin times lie in the span.
+// EventsWithin returns the events whose own origin times lie in the span.
 func (t *Tx) EventsWithin(ctx context.Context, from, to time.Time) ([]EventKey, error) {
 	// Fractions of a second sort oddly as text: a second more on both sides.
-	return t.eventKeys(ctx, `origin_time BETWEEN ? AND ?`, timeText(from.Add(-time.Second)), timeText(to.Add(time.Second)))
+	return t.eventKeys(ctx, `own_origin BETWEEN ? AND ?`, timeText(from.Add(-time.Second)), timeText(to.Add(time.Second)))
 }
 
 // EventsAlike returns the event, those that share an identifier with it, and those
 // that stand for one another with it.
 func (t *Tx) EventsAlike(ctx context.Context, id int64) ([]EventKey, error) {
-	return t.eventKeys(ctx, `id = ?1 OR id IN (SELECT b.subject_id FROM statement a JOIN statement b USING (subject, attribute, value)
-			WHERE a.subject = 'event' AND a.attribute = 'identifier' AND a.subject_id = ?1)
-		OR coalesce(primary_id, id) = (SELECT coalesce(primary_id, id) FROM event WHERE id = ?1)`, id)
+	// The cross join keeps the order: from what the event states to who else does.
+	return t.eventKeys(ctx, `id IN (
+			SELECT ?1
+			UNION SELECT b.subject_id FROM statement a CROSS JOIN statement b ON b.attribute = 'identifier' AND b.value = a.value
+				WHERE a.subject = 'event' AND a.subject_id = ?1 AND a.attribute = 'identifier'
+			UNION SELECT primary_id FROM event WHERE id = ?1
+			UNION SELECT id FROM event WHERE primary_id = ?1
+			UNION SELECT o.id FROM event e JOIN event o ON o.primary_id = e.primary_id WHERE e.id = ?1)`, id)
 }
 
 func (t *Tx) eventKeys(ctx context.Context, where string, args ...any) ([]EventKey, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT id, code, coalesce(primary_id, id) FROM event WHERE `+where+` ORDER BY code`, args...)
+	rows, err := t.tx.QueryContext(ctx, `SELECT id, code FROM event WHERE `+where+` ORDER BY code`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
 	}
-	return collect(rows, func(k *EventKey) []any { return []any{&k.ID, &k.Code, &k.PrimaryID} })
+	return collect(rows, func(k *EventKey) []any { return []any{&k.ID, &k.Code} })
 }
 
-// SetEvent stores what is taken of an event's statements, and the event that
-// stands for it. It reports whether anything changed.
-func (t *Tx) SetEvent(ctx context.Context, id, primaryID int64, e Event) (changed bool, err error) {
+// SetEvent stores what is taken of an event's statements, the origin time of its own
+// ones, and the event that stands for it. It reports whether anything changed.
+func (t *Tx) SetEvent(ctx context.Context, id, primaryID int64, ownOrigin time.Time, e Event) (changed bool, err error) {
 	var primary any
 	if primaryID != id {
 		primary = primaryID
 	}
 	return t.changed(ctx, "event", id, []assignment{
-		{"primary_id", primary}, {"name", textOrNull(e.Name)}, {"origin_time", timeText(e.Origin)}, {"latitude_deg", e.LatitudeDeg},
-		{"longitude_deg", e.LongitudeDeg}, {"depth_km", e.DepthKM}, {"magnitude", e.Magnitude}, {"magnitude_type", textOrNull(e.MagnitudeType)},
+		{"primary_id", primary}, {"own_origin", timeText(ownOrigin)}, {"name", textOrNull(e.Name)}, {"origin_time", timeText(e.Origin)},
+		{"latitude_deg", e.LatitudeDeg}, {"longitude_deg", e.LongitudeDeg}, {"depth_km", e.DepthKM}, {"magnitude", e.Magnitude},
+		{"magnitude_type", textOrNull(e.MagnitudeType)},
 	})
 }
 
@@ -197,10 +214,10 @@ func (t *Tx) changed(ctx context.Context, table string, id int64, to []assignmen
 }
 
 // Relations counts the event codes for which another stands, and the components
-// whose motion statistics take from another.
+// that hold a motion which another holds too, beyond the first.
 func (t *Tx) Relations(ctx context.Context) (joined, duplicates int, err error) {
 	err = t.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM event WHERE primary_id IS NOT NULL),
-		(SELECT count(*) FROM component WHERE duplicate_of IS NOT NULL)`).Scan(&joined, &duplicates)
+		(SELECT count(*) FROM component WHERE motion_id <> id)`).Scan(&joined, &duplicates)
 	if err != nil {
 		return 0, 0, fmt.Errorf("count relations: %w", err)
 	}

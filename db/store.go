@@ -30,9 +30,10 @@ type Store struct {
 }
 
 // Create opens the store at path for reading and writing, makes it where there
-// is none, and applies the migrations that it lacks.
-func Create(ctx context.Context, path string) (*Store, error) {
-	s, err := openWriter(ctx, path)
+// is none, and applies the migrations that it lacks; but nothing to a store that
+// another version of the solver computed, which the error says.
+func Create(ctx context.Context, path, solver string) (*Store, error) {
+	s, err := openWriter(ctx, path, solver)
 	if err != nil {
 		return nil, fmt.Errorf("open store %s: %w", path, err)
 	}
@@ -40,10 +41,10 @@ func Create(ctx context.Context, path string) (*Store, error) {
 }
 
 // Open opens the store at path for reading. A store that lacks migrations is
-// brought up to date first. The error is ErrNoStore where there is no file and
-// ErrNewer where a newer program wrote it.
-func Open(ctx context.Context, path string) (*Store, error) {
-	s, err := openReader(ctx, path)
+// brought up to date first, as Create does. The error is ErrNoStore where there is
+// no file and ErrNewer where a newer program wrote it.
+func Open(ctx context.Context, path, solver string) (*Store, error) {
+	s, err := openReader(ctx, path, solver)
 	if err != nil {
 		return nil, fmt.Errorf("open store %s: %w", path, err)
 	}
@@ -67,7 +68,7 @@ func (s *Store) Path() string { return s.path }
 // hold the upper levels of the indices.
 const writing = "_txlock=immediate&_pragma=cache_size(-8192)"
 
-func openWriter(ctx context.Context, path string) (*Store, error) {
+func openWriter(ctx context.Context, path, solver string) (*Store, error) {
 	if err := refuseForeign(ctx, path); err != nil {
 		return nil, err
 	}
@@ -76,7 +77,7 @@ func openWriter(ctx context.Context, path string) (*Store, error) {
 		return nil, err
 	}
 	write.SetMaxOpenConns(1)
-	if err := prepareWriter(ctx, write); err != nil {
+	if err := prepareWriter(ctx, write, solver); err != nil {
 		return nil, errors.Join(explain(err), write.Close())
 	}
 	read, err := openPool(path)
@@ -104,7 +105,7 @@ func refuseForeign(ctx context.Context, path string) error {
 	return explain(err)
 }
 
-func prepareWriter(ctx context.Context, write *sql.DB) error {
+func prepareWriter(ctx context.Context, write *sql.DB, solver string) error {
 	mode, err := switchToLog(ctx, write)
 	if err != nil {
 		return err
@@ -112,7 +113,7 @@ func prepareWriter(ctx context.Context, write *sql.DB) error {
 	if !strings.EqualFold(mode, "wal") {
 		return fmt.Errorf("write-ahead log refused: the journal mode is %q; is the folder on a file system without shared memory?", mode)
 	}
-	return migrate(ctx, write)
+	return migrate(ctx, write, solver)
 }
 
 // switchToLog asks for the write-ahead log, which the file then keeps, and
@@ -143,7 +144,7 @@ func codeOf(err error) int {
 	return 0
 }
 
-func openReader(ctx context.Context, path string) (*Store, error) {
+func openReader(ctx context.Context, path, solver string) (*Store, error) {
 	if info, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) || err == nil && info.Size() == 0 {
 		return nil, ErrNoStore
 	}
@@ -164,7 +165,7 @@ func openReader(ctx context.Context, path string) (*Store, error) {
 	if err := read.Close(); err != nil {
 		return nil, err
 	}
-	return openWriter(ctx, path)
+	return openWriter(ctx, path, solver)
 }
 
 // openFrozen opens a store that this process may not write to, nor its folder,

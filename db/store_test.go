@@ -19,7 +19,7 @@ func number(x float64) *float64 { return &x }
 
 func newStore(t *testing.T) *Store {
 	t.Helper()
-	s, err := Create(t.Context(), filepath.Join(t.TempDir(), "with space & sign?.db"))
+	s, err := Create(t.Context(), filepath.Join(t.TempDir(), "with space & sign?.db"), testSolver)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -80,7 +80,7 @@ func filledStore(t *testing.T) (*Store, Generation) {
 		if _, err = tx.StartRun(ctx, "ingest", "test", time.Now()); err != nil {
 			return err
 		}
-		g, err = tx.CreateGeneration(ctx, Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, "solver 1")
+		g, err = tx.CreateGeneration(ctx, Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, testSolver)
 		return err
 	})
 	return s, g
@@ -116,7 +116,7 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		return errors.Join(add(ctx, tx, g, "R2", RoleH1, 2), add(ctx, tx, g, "R1", RoleH2, 1), add(ctx, tx, g, "R1", RoleH1, 0.5))
 	})
 	err := s.View(t.Context(), func(v *Snapshot) error {
-		if !v.Generation.Grid.Equal(testGrid) || v.Generation.Solver != "solver 1" {
+		if !v.Generation.Grid.Equal(testGrid) || v.Generation.Solver != testSolver {
 			t.Errorf("generation = %+v", v.Generation)
 		}
 		cs, err := v.Components(t.Context(), AllDetails)
@@ -299,3 +299,6 @@ func TestViewIsOneState(t *testing.T) {
 		t.Error(err)
 	}
 }
+
+// testSolver is the version of the solver in these tests.
+const testSolver = "solver 1"

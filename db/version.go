@@ -6,36 +6,58 @@ import (
 	"time"
 )
 
-// Version is a component that may be another version of a motion held beside it.
+// Version is a component that may hold the same motion as another.
 type Version struct {
 	ComponentID, RecordID int64
 	RecordCode            string
 	Component             // of which Warnings and HeaderPeak are not read
 	Digest                string
+	Instrument            string
 	// The event, by the one that stands for it, and the station's code; 0 and "" where
 	// unknown.
 	EventID     int64
 	StationCode string
-	DuplicateOf int64 // the component that statistics take, 0 where that is this
+	MotionID    int64 // 0 where no other component holds the motion
 }
 
-// Versions returns the components of the record and of those that may hold the
-// same motions: records of one event at a station of the same code, and records
-// with a component of equal samples. They are ordered by record and role.
-func (t *Tx) Versions(ctx context.Context, recordID int64) ([]Version, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
-			coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
-			f.path, f.sha256, f.format, x.sha256, coalesce(c.duplicate_of, 0), coalesce(e.primary_id, e.id, 0), coalesce(s.code, '')
-		FROM component c JOIN record r ON r.id = c.record_id LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
-		WHERE c.record_id IN (
-			SELECT ?1
-			UNION SELECT other.id FROM record this JOIN event e ON e.id = this.event_id JOIN station s ON s.id = this.station_id
-				JOIN station same ON same.code = s.code AND (same.network = s.network OR same.network = '' OR s.network = '')
-				JOIN record other ON other.station_id = same.id JOIN event f ON f.id = other.event_id
-				WHERE this.id = ?1 AND coalesce(f.primary_id, f.id) = coalesce(e.primary_id, e.id)
-			UNION SELECT o.record_id FROM component c JOIN series x ON x.component_id = c.id JOIN series y ON y.sha256 = x.sha256
-				JOIN component o ON o.id = y.component_id WHERE c.record_id = ?1)
-		ORDER BY r.code, c.role`, recordID)
+// versionColumns are what is read of a version, from component c, record r, its
+// event e and station s, source file f and series x.
+const versionColumns = `c.id, c.record_id, r.code, r.instrument, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
+	coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
+	f.path, f.sha256, f.format, x.sha256, coalesce(c.motion_id, 0), coalesce(e.primary_id, e.id, 0), coalesce(s.code, '')
+	FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
+	LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id`
+
+// Related returns the records that may hold the same motions as this one, itself
+// included: records of one event at a station of the same code, records with a
+// component of equal samples, and those that were found to.
+func (t *Tx) Related(ctx context.Context, recordID int64) ([]int64, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT ?1
+		UNION SELECT other.id FROM record this JOIN station s ON s.id = this.station_id JOIN station same ON same.code = s.code
+			JOIN record other ON other.station_id = same.id JOIN event e ON e.id = this.event_id JOIN event f ON f.id = other.event_id
+			WHERE this.id = ?1 AND coalesce(f.primary_id, f.id) = coalesce(e.primary_id, e.id)
+				AND (same.network = s.network OR same.network = '' OR s.network = '')
+		UNION SELECT o.record_id FROM component c JOIN series x ON x.component_id = c.id JOIN series y ON y.sha256 = x.sha256
+			JOIN component o ON o.id = y.component_id WHERE c.record_id = ?1
+		UNION SELECT o.record_id FROM component c JOIN component o ON o.motion_id = c.motion_id WHERE c.record_id = ?1`, recordID)
+	if err != nil {
+		return nil, fmt.Errorf("read versions: %w", err)
+	}
+	return collect(rows, func(id *int64) []any { return []any{id} })
+}
+
+// VersionsOf returns the components of a record.
+func (t *Tx) VersionsOf(ctx context.Context, recordID int64) ([]Version, error) {
+	return versions(ctx, t.tx, `SELECT `+versionColumns+` WHERE c.record_id = ? ORDER BY c.id`, recordID)
+}
+
+// Versions returns the components that hold a motion which another one holds too.
+func (s *Snapshot) Versions(ctx context.Context) ([]Version, error) {
+	return versions(ctx, s.tx, `SELECT `+versionColumns+` WHERE c.motion_id IS NOT NULL ORDER BY c.id`)
+}
+
+func versions(ctx context.Context, q queryer, query string, args ...any) ([]Version, error) {
+	rows, err := q.QueryContext(ctx, query, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)
 	}
@@ -44,9 +66,9 @@ func (t *Tx) Versions(ctx context.Context, recordID int64) ([]Version, error) {
 		start string
 	}
 	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
+		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Instrument, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
 			&v.start, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz,
-			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.DuplicateOf, &v.EventID, &v.StationCode}
+			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.MotionID, &v.EventID, &v.StationCode}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)
@@ -101,47 +123,17 @@ func (t *Tx) PutLikeness(ctx context.Context, l Likeness) error {
 }
 
 // SamplesOf returns a component's acceleration in m/s², as Snapshot.Samples does.
-func (t *Tx) SamplesOf(ctx context.Context, v Version) ([]float64, error) {
-	s := Snapshot{tx: t.tx.tx}
-	return s.Samples(ctx, v.RecordID, v.Role)
+func (t *Tx) SamplesOf(ctx context.Context, v *Version) ([]float64, error) {
+	return samples(ctx, t.tx, v.RecordID, v.Role)
 }
 
-// ComponentKey is a component's record and role.
-type ComponentKey struct {
-	RecordID int64
-	Role     string
-}
-
-// Duplicates returns, for every component whose motion statistics take from another
-// one, the code of that one's record.
-func (s *Snapshot) Duplicates(ctx context.Context) (map[ComponentKey]string, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role, r.code FROM component c
-		JOIN component o ON o.id = c.duplicate_of JOIN record r ON r.id = o.record_id WHERE c.duplicate_of IS NOT NULL`)
-	if err != nil {
-		return nil, fmt.Errorf("read duplicates: %w", err)
-	}
-	type row struct {
-		ComponentKey
-		code string
-	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.RecordID, &v.Role, &v.code} })
-	if err != nil {
-		return nil, fmt.Errorf("read duplicates: %w", err)
-	}
-	out := make(map[ComponentKey]string, len(found))
-	for _, v := range found {
-		out[v.ComponentKey] = v.code
-	}
-	return out, nil
-}
-
-// SetDuplicate stores which component statistics take of the same motion, 0 for
-// the component itself.
-func (t *Tx) SetDuplicate(ctx context.Context, componentID, of int64) error {
+// SetMotion stores the least id of the components that hold the same motion, 0 where
+// there is no other.
+func (t *Tx) SetMotion(ctx context.Context, componentID, motionID int64) error {
 	var value any
-	if of != 0 {
-		value = of
+	if motionID != 0 {
+		value = motionID
 	}
-	_, err := t.changed(ctx, "component", componentID, []assignment{{"duplicate_of", value}})
+	_, err := t.changed(ctx, "component", componentID, []assignment{{"motion_id", value}})
 	return err
 }

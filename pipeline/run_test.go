@@ -72,7 +72,7 @@ func put(t testing.TB, dir, name, text string) {
 
 func newStore(t *testing.T) *db.Store {
 	t.Helper()
-	s, err := db.Create(t.Context(), filepath.Join(t.TempDir(), "store.db"))
+	s, err := db.Create(t.Context(), filepath.Join(t.TempDir(), "store.db"), SolverVersion)
 	if err != nil {
 		t.Fatal(err)
 	}

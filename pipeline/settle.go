@@ -2,7 +2,6 @@ package pipeline
 
 import (
 	"context"
-	"maps"
 	"slices"
 
 	"swaybook/db"
@@ -14,13 +13,14 @@ import (
 // in which they came.
 type settler struct {
 	tx       *db.Tx
-	known    map[db.Statement]bool // stated before, source left out
+	known    map[db.Statement]string // what was stated before, without its source: the least of those
 	touched  map[db.Subject]bool
+	settled  map[db.Subject]bool // together with others
 	comparer likeness.Comparer
 }
 
-func newSettler(tx *db.Tx, known map[db.Statement]bool) *settler {
-	return &settler{tx: tx, known: known, touched: map[db.Subject]bool{}}
+func newSettler(tx *db.Tx, known map[db.Statement]string) *settler {
+	return &settler{tx: tx, known: known, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{}}
 }
 
 // state keeps what the accounts say of a record, its event and its station.
@@ -37,12 +37,12 @@ func (s *settler) state(ctx context.Context, k db.RecordKey, accounts []account)
 }
 
 // stateOne keeps one statement. Most files of an event or a station repeat what
-// the first one said; files come in order of path, so that its source stays.
+// another one said; of equal statements the source first by name stays.
 func (s *settler) stateOne(ctx context.Context, st db.Statement) error {
 	key := st
 	key.Source = ""
 	shared := st.Kind != db.SubjectRecord
-	if shared && s.known[key] {
+	if source, ok := s.known[key]; shared && ok && source <= st.Source {
 		return nil
 	}
 	isNew, err := s.tx.State(ctx, st)
@@ -50,7 +50,7 @@ func (s *settler) stateOne(ctx context.Context, st db.Statement) error {
 		return err
 	}
 	if shared {
-		s.known[key] = true
+		s.known[key] = st.Source
 	}
 	if isNew {
 		s.touched[st.Subject] = true
@@ -63,10 +63,13 @@ func (s *settler) settle(ctx context.Context) error {
 	steps := []struct {
 		kind string
 		do   func(context.Context, int64) error
-	}{{db.SubjectEvent, s.event}, {db.SubjectStation, s.station}, {db.SubjectRecord, s.record}}
+	}{{db.SubjectEvent, s.event}, {db.SubjectStation, s.station}, {db.SubjectRecord, s.record}, {db.SubjectRecord, s.versions}}
 	for _, step := range steps {
-		for _, subject := range s.ofKind(step.kind) {
-			if err := step.do(ctx, subject.ID); err != nil {
+		for _, id := range s.ofKind(step.kind) {
+			if s.settled[db.Subject{Kind: step.kind, ID: id}] {
+				continue
+			}
+			if err := step.do(ctx, id); err != nil {
 				return err
 			}
 		}
@@ -74,8 +77,16 @@ func (s *settler) settle(ctx context.Context) error {
 	return nil
 }
 
-func (s *settler) ofKind(kind string) []db.Subject {
-	return slices.DeleteFunc(slices.Collect(maps.Keys(s.touched)), func(t db.Subject) bool { return t.Kind != kind })
+// ofKind returns the ids of the touched subjects of a kind, in order.
+func (s *settler) ofKind(kind string) []int64 {
+	var ids []int64
+	for t := range s.touched {
+		if t.Kind == kind {
+			ids = append(ids, t.ID)
+		}
+	}
+	slices.Sort(ids)
+	return ids
 }
 
 // event settles the event and all that may be the same earthquake.
@@ -93,7 +104,8 @@ func (s *settler) event(ctx context.Context, id int64) error {
 			}
 		}
 		db.SortStatements(all)
-		changed, err := s.tx.SetEvent(ctx, events[i].ID, events[stands[i]].ID, takenOf(all).event())
+		s.settled[db.Subject{Kind: db.SubjectEvent, ID: events[i].ID}] = true
+		changed, err := s.tx.SetEvent(ctx, events[i].ID, events[stands[i]].ID, events[i].Origin, takenOf(all).event())
 		if err != nil {
 			return err
 		}
@@ -104,9 +116,9 @@ func (s *settler) event(ctx context.Context, id int64) error {
 	return nil
 }
 
-// neighbours returns the event, those that share an identifier with it or stood for one another
-// with it, and those whose origin times are within the tolerance of one another,
-// each by its own statements.
+// neighbours returns the event and all that are connected with it: by an
+// identifier, by having stood for one another, or by own origin times within the
+// tolerance of one another; each by its own statements.
 func (s *settler) neighbours(ctx context.Context, id int64) (events []statedEvent, statements [][]db.Statement, err error) {
 	seen := map[int64]bool{}
 	add := func(keys []db.EventKey, err error) error {
@@ -174,8 +186,7 @@ func (s *settler) touchRecords(ctx context.Context, of db.Subject, changed bool)
 	return err
 }
 
-// record computes the distances that follow from coordinates, takes the best, and
-// looks for other versions of the record's motions.
+// record computes the distances that follow from coordinates, and takes the best.
 func (s *settler) record(ctx context.Context, id int64) error {
 	subject := db.Subject{Kind: db.SubjectRecord, ID: id}
 	places, err := s.tx.Places(ctx, subject)
@@ -183,19 +194,32 @@ func (s *settler) record(ctx context.Context, id int64) error {
 		return err
 	}
 	for _, p := range places {
-		for _, st := range computedDistances(p) {
-			st.Subject, st.By, st.Source = subject, db.ByComputed, "coordinates"
-			if _, err := s.tx.State(ctx, st); err != nil {
-				return err
-			}
+		if err := s.compute(ctx, subject, computedDistances(p)); err != nil {
+			return err
 		}
 	}
 	statements, err := s.tx.Statements(ctx, subject)
 	if err != nil {
 		return err
 	}
-	if err := s.tx.SetDistances(ctx, id, distancesOf(statements)); err != nil {
-		return err
+	return s.tx.SetDistances(ctx, id, distancesOf(statements))
+}
+
+// compute states the distances that follow and forgets those that no longer do.
+func (s *settler) compute(ctx context.Context, record db.Subject, follow []db.Statement) error {
+	for _, attribute := range []string{db.AttributeEpicentral, db.AttributeHypocentral} {
+		at := slices.IndexFunc(follow, func(st db.Statement) bool { return st.Attribute == attribute })
+		var err error
+		if at < 0 {
+			_, err = s.tx.Unstate(ctx, record, attribute, db.ByComputed)
+		} else {
+			st := follow[at]
+			st.Subject, st.By, st.Source = record, db.ByComputed, "coordinates"
+			_, err = s.tx.State(ctx, st)
+		}
+		if err != nil {
+			return err
+		}
 	}
-	return s.versions(ctx, id)
+	return nil
 }

@@ -107,7 +107,7 @@ func invented() []inventedAccount {
 func settled(t *testing.T, accounts []inventedAccount, batch int) (*db.Store, []string) {
 	t.Helper()
 	store := newStore(t)
-	known := map[db.Statement]bool{}
+	known := map[db.Statement]string{}
 	for part := range slices.Chunk(accounts, batch) {
 		err := store.Update(t.Context(), func(tx *db.Tx) error {
 			g, err := settleGeneration(t.Context(), tx, testGrid)
@@ -179,6 +179,34 @@ func TestWhatIsTakenDependsOnStatementsAlone(t *testing.T) {
 		batch := 1 + rng.IntN(len(accounts))
 		if _, got := settled(t, accounts, batch); !slices.Equal(got, want) {
 			t.Fatalf("in batches of %d:\ngot  %s\nwant %s", batch, strings.Join(got, "\n     "), strings.Join(want, "\n     "))
+		}
+	}
+}
+
+// Events that follow one another within the tolerance, and sources of one value on
+// both sides of another's: what comes first, or in one batch, does not matter.
+func TestChainsSettleAlike(t *testing.T) {
+	at := func(code, source, id string, later float64) inventedAccount {
+		e := ingest.Event{ID: id, Origin: quakeTime.Add(seconds(later)), Latitude: ingest.Known(41), Longitude: ingest.Known(14)}
+		return header(code, source, e, ingest.Station{})
+	}
+	placed := func(code, source string, lat float64) inventedAccount {
+		s := ingest.Station{Network: "XX", Code: "AAA", Latitude: ingest.Known(lat), Longitude: ingest.Known(14)}
+		return header(code, source, ingest.Event{ID: "far", Latitude: ingest.Known(40), Longitude: ingest.Known(14)}, s)
+	}
+	accounts := []inventedAccount{
+		at("R1", "a", "EV1", 8), at("R2", "b", "", 0), at("R3", "c", "", -5), at("R4", "d", "", -14),
+		placed("R5", "e", 41), placed("R6", "m", 42), placed("R7", "z", 41),
+	}
+	_, want := settled(t, accounts, len(accounts))
+	if !strings.Contains(want[4], "epicentral 111 ") {
+		t.Fatalf("of a, m and z that of a is taken: %s", want[4])
+	}
+	rng := rand.New(rand.NewPCG(6, 7))
+	for range 20 {
+		rng.Shuffle(len(accounts), func(i, j int) { accounts[i], accounts[j] = accounts[j], accounts[i] })
+		if _, got := settled(t, accounts, 1+rng.IntN(3)); !slices.Equal(got, want) {
+			t.Fatalf("got  %s\nwant %s", strings.Join(got, "\n     "), strings.Join(want, "\n     "))
 		}
 	}
 }

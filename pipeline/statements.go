@@ -122,7 +122,7 @@ func (t taken) station() db.Station {
 	return s
 }
 
-// distances takes the distances of known kind, and the best of all: that of the
+// distancesOf takes the distances of known kind, and the best of all: that of the
 // catalogue's column for it, then by how much of the earthquake's extent they know.
 func distancesOf(statements []db.Statement) db.Distances {
 	t := takenOf(statements)

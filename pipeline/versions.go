@@ -1,11 +1,9 @@
 package pipeline
 
 import (
-	"cmp"
 	"context"
 	"errors"
 	"math"
-	"slices"
 	"strings"
 
 	"swaybook/db"
@@ -16,166 +14,196 @@ import (
 // parallelDeg is how far apart two azimuths of one direction may be stated.
 const parallelDeg = 2
 
-// versions settles which components hold the same motion as one of the record, and
-// which of them statistics take: the one whose record comes first by precedence.
+// versions settles which components of the record, and of all records that may
+// hold the same motions as it or as one of those, do. Whatever may be compared is
+// compared each with each, so that the order does not matter.
 func (s *settler) versions(ctx context.Context, recordID int64) error {
-	found, err := s.tx.Versions(ctx, recordID)
+	records, err := s.related(ctx, recordID)
+	if err != nil || len(records) < 2 {
+		return err
+	}
+	var all []*db.Version
+	for _, id := range records {
+		s.settled[db.Subject{Kind: db.SubjectRecord, ID: id}] = true
+		found, err := s.tx.VersionsOf(ctx, id)
+		if err != nil {
+			return err
+		}
+		for i := range found {
+			all = append(all, &found[i])
+		}
+	}
+	motionOf, err := s.motions(ctx, all)
 	if err != nil {
 		return err
 	}
-	records := byPreference(found)
-	var taken []*db.Version
-	for _, record := range records {
-		var own []*db.Version
-		for _, v := range record {
-			of, err := s.sameMotion(ctx, v, taken)
-			if err != nil {
-				return err
-			}
-			if of == 0 {
-				own = append(own, v)
-			}
-			if of != v.DuplicateOf {
-				if err := s.tx.SetDuplicate(ctx, v.ComponentID, of); err != nil {
-					return err
-				}
-			}
+	for i, v := range all {
+		if motionOf[i] == v.MotionID {
+			continue
 		}
-		taken = append(taken, own...)
+		if err := s.tx.SetMotion(ctx, v.ComponentID, motionOf[i]); err != nil {
+			return err
+		}
 	}
 	return nil
 }
 
-// sameMotion returns the first of the components that holds the motion of v, 0 for
-// none.
-func (s *settler) sameMotion(ctx context.Context, v *db.Version, taken []*db.Version) (int64, error) {
-	for _, other := range taken {
-		if !canBeOne(v, other) {
-			continue
+// related returns the record and all that are connected with it by what
+// db.Tx.Related says.
+func (s *settler) related(ctx context.Context, recordID int64) ([]int64, error) {
+	records, seen := []int64{recordID}, map[int64]bool{recordID: true}
+	for i := 0; i < len(records); i++ { // appended to below
+		found, err := s.tx.Related(ctx, records[i])
+		if err != nil {
+			return nil, err
 		}
-		if v.Digest == other.Digest {
-			return other.ComponentID, nil
-		}
-		same, err := s.alike(ctx, v, other)
-		if err != nil || same {
-			return other.ComponentID, err
+		for _, id := range found {
+			if !seen[id] {
+				seen[id] = true
+				records = append(records, id)
+			}
 		}
 	}
-	return 0, nil
+	return records, nil
+}
+
+// motions returns the motion of each component: the least id of those that hold it,
+// 0 where there is no other.
+func (s *settler) motions(ctx context.Context, all []*db.Version) ([]int64, error) {
+	group := make([]int, len(all)) // the first position of those that are one
+	read := map[int64]*likeness.Motion{}
+	for i, a := range all {
+		group[i] = i
+		for j, b := range all[:i] {
+			if a.RecordID == b.RecordID || group[i] == group[j] || !canBeOne(a, b) {
+				continue
+			}
+			same, err := s.alike(ctx, a, b, read)
+			if err != nil {
+				return nil, err
+			}
+			if same {
+				unite(group[:i+1], i, j)
+			}
+		}
+	}
+	least, size := map[int]int64{}, map[int]int{}
+	for i, g := range group {
+		if size[g]++; size[g] == 1 || all[i].ComponentID < least[g] {
+			least[g] = all[i].ComponentID
+		}
+	}
+	out := make([]int64, len(all))
+	for i, g := range group {
+		if size[g] > 1 {
+			out[i] = least[g]
+		}
+	}
+	return out, nil
+}
+
+// unite makes the groups of i and j one.
+func unite(group []int, i, j int) {
+	from, to := max(group[i], group[j]), min(group[i], group[j])
+	for k, g := range group {
+		if g == from {
+			group[k] = to
+		}
+	}
 }
 
 // canBeOne reports whether two components measure one direction at one time and
 // place, as far as they say.
 func canBeOne(a, b *db.Version) bool {
+	return !differ(a.EventID, b.EventID) && !differ(a.StationCode, b.StationCode) && overlap(a, b) && areParallel(a, b)
+}
+
+// differ reports whether both are known and not the same.
+func differ[T comparable](a, b T) bool {
+	var unknown T
+	return a != unknown && b != unknown && a != b
+}
+
+func overlap(a, b *db.Version) bool {
+	return a.Start.IsZero() || b.Start.IsZero() || !a.End().Before(b.Start) && !b.End().Before(a.Start)
+}
+
+// areParallel reports whether two components measure one direction, either way
+// round. Of equal samples it is enough that none says otherwise.
+func areParallel(a, b *db.Version) bool {
+	unknown := axes[ingest.AxisUnknown]
 	switch {
-	case a.EventID != 0 && b.EventID != 0 && a.EventID != b.EventID, a.StationCode != "" && b.StationCode != "" && a.StationCode != b.StationCode:
-		return false
 	case a.Axis != b.Axis:
-		return a.Digest == b.Digest && (a.Axis == axes[ingest.AxisUnknown] || b.Axis == axes[ingest.AxisUnknown])
-	case !a.Start.IsZero() && !b.Start.IsZero() && (a.End().Before(b.Start) || b.End().Before(a.Start)):
-		return false
+		return a.Digest == b.Digest && (a.Axis == unknown || b.Axis == unknown)
 	case a.Axis == axes[ingest.AxisVertical]:
 		return true
 	case a.AzimuthDeg != nil && b.AzimuthDeg != nil:
-		// One may point the other way.
 		return math.Abs(math.Remainder(*a.AzimuthDeg-*b.AzimuthDeg, 180)) <= parallelDeg
 	}
 	return strings.EqualFold(a.Label, b.Label) || a.Digest == b.Digest
 }
 
-// alike compares the samples of two components, once for all time.
-func (s *settler) alike(ctx context.Context, a, b *db.Version) (bool, error) {
+// areTwoSensors reports whether two components are of instruments that their
+// network tells apart: on one foundation their motions are much alike.
+func areTwoSensors(a, b *db.Version) bool {
+	return a.SourceSHA256 == b.SourceSHA256 ||
+		a.SourceFormat == b.SourceFormat && (differ(a.Instrument, b.Instrument) || differ(a.Channel, b.Channel))
+}
+
+// alike reports whether two components hold the same motion. read keeps what is
+// read of each.
+func (s *settler) alike(ctx context.Context, a, b *db.Version, read map[int64]*likeness.Motion) (bool, error) {
+	if a.Digest == b.Digest {
+		return true, nil
+	}
 	l, ok, err := s.tx.LikenessOf(ctx, a.ComponentID, b.ComponentID)
+	if err == nil && !ok {
+		l, err = s.compare(ctx, a, b, read)
+	}
 	if err != nil {
 		return false, err
 	}
-	if !ok {
-		if a.ComponentID > b.ComponentID {
-			a, b = b, a
-		}
-		if l, err = s.compare(ctx, a, b); err != nil {
-			return false, err
-		}
-		if err := s.tx.PutLikeness(ctx, l); err != nil {
-			return false, err
-		}
+	switch l.Kind {
+	case likeness.Different.String():
+		return false, nil
+	case likeness.Similar.String():
+		return !areTwoSensors(a, b), nil
 	}
-	return l.Kind != likeness.Different.String(), nil
+	return true, nil
 }
 
-func (s *settler) compare(ctx context.Context, a, b *db.Version) (db.Likeness, error) {
+// compare compares the samples of two components, once for all time.
+func (s *settler) compare(ctx context.Context, a, b *db.Version, read map[int64]*likeness.Motion) (db.Likeness, error) {
+	if a.ComponentID > b.ComponentID {
+		a, b = b, a
+	}
 	l := db.Likeness{FirstID: a.ComponentID, SecondID: b.ComponentID, Kind: likeness.Different.String()}
-	first, err := s.motion(ctx, a)
+	first, err := s.motion(ctx, a, read)
 	if err != nil || first == nil {
 		return l, err
 	}
-	second, err := s.motion(ctx, b)
+	second, err := s.motion(ctx, b, read)
 	if err != nil || second == nil {
 		return l, err
 	}
 	v := s.comparer.Compare(first, second)
 	l.Kind, l.Scale, l.Correlation = v.Kind.String(), v.Scale, v.Correlation
-	return l, nil
+	return l, s.tx.PutLikeness(ctx, l)
 }
 
 // motion reads a component's samples; nil where the store has lost them.
-func (s *settler) motion(ctx context.Context, v *db.Version) (*likeness.Motion, error) {
-	samples, err := s.tx.SamplesOf(ctx, *v)
+func (s *settler) motion(ctx context.Context, v *db.Version, read map[int64]*likeness.Motion) (*likeness.Motion, error) {
+	if m, ok := read[v.ComponentID]; ok {
+		return m, nil
+	}
+	samples, err := s.tx.SamplesOf(ctx, v)
 	if errors.Is(err, db.ErrDamaged) {
+		read[v.ComponentID] = nil
 		return nil, nil
 	}
 	if err != nil {
 		return nil, err
 	}
-	return likeness.NewMotion(samples, v.StepS)
-}
-
-// byPreference groups components by record, the record first of which statistics
-// take the motion: one with both horizontals before one without, corrected before
-// raw, then the wider usable band, the longer motion, and the earlier path.
-func byPreference(found []db.Version) [][]*db.Version {
-	byRecord := map[int64][]*db.Version{}
-	for i := range found {
-		v := &found[i]
-		byRecord[v.RecordID] = append(byRecord[v.RecordID], v)
-	}
-	var records [][]*db.Version
-	for _, r := range byRecord {
-		records = append(records, r)
-	}
-	slices.SortFunc(records, func(a, b []*db.Version) int {
-		return cmp.Or(
-			cmp.Compare(horizontalCount(b), horizontalCount(a)),
-			cmp.Compare(processingRank(a[0].Processing), processingRank(b[0].Processing)),
-			cmp.Compare(usableBand(b[0]), usableBand(a[0])),
-			cmp.Compare(float64(b[0].Samples)*b[0].StepS, float64(a[0].Samples)*a[0].StepS),
-			strings.Compare(a[0].SourcePath, b[0].SourcePath),
-			strings.Compare(a[0].RecordCode, b[0].RecordCode))
-	})
-	return records
-}
-
-func horizontalCount(components []*db.Version) int {
-	n := 0
-	for _, v := range components {
-		if v.Role == db.RoleH1 || v.Role == db.RoleH2 {
-			n++
-		}
-	}
-	return n
-}
-
-// processingRank is low for what is ready for use.
-func processingRank(state string) int {
-	order := []ingest.Processing{ingest.ProcessingCorrected, ingest.ProcessingMeanRemoved, ingest.ProcessingUnknown, ingest.ProcessingRaw}
-	return slices.Index(order, ingest.Processing(state))
-}
-
-// usableBand is the logarithm of the ratio of the corner frequencies, 0 where one
-// is not stated.
-func usableBand(v *db.Version) float64 {
-	if v.LowCutHz == nil || v.HighCutHz == nil || !(*v.LowCutHz > 0) {
-		return 0
-	}
-	return math.Log(*v.HighCutHz / *v.LowCutHz)
+	read[v.ComponentID], err = likeness.NewMotion(samples, v.StepS)
+	return read[v.ComponentID], err
 }

@@ -1,11 +1,11 @@
 package pipeline
 
 import (
+	"cmp"
 	"fmt"
 	"math/rand/v2"
 	"strings"
 	"testing"
-	"time"
 
 	"swaybook/db"
 )
@@ -52,13 +52,60 @@ func TestVersionsOfOneMotion(t *testing.T) {
 	}
 }
 
-// duplicates lists the components with the record from which statistics take
-// each instead.
+// Three versions under two networks and none, and a copy that knows nothing: which
+// comes first does not matter, nor that two of the networks have nothing to do with
+// each other.
+func TestVersionsDoNotDependOnOrder(t *testing.T) {
+	files := []string{"aa.csv", "none.csv", "bb.csv", "copy.csv"}
+	text := map[string]string{"aa.csv": csvOf(1, 1, 2), "none.csv": csvOf(1, 1, 3), "bb.csv": csvOf(1, 2, 3), "copy.csv": "# unit = gal\n" + csvOf(1, 2, 3)}
+	const table = "file,event,station,network,component\naa.csv,EV,S1,AA,000\nnone.csv,EV,S1,,000\nbb.csv,EV,S1,BB,000\n"
+	for range 6 {
+		rand.Shuffle(len(files), func(i, j int) { files[i], files[j] = files[j], files[i] })
+		store := newStore(t)
+		for _, name := range files {
+			dir := t.TempDir()
+			put(t, dir, name, text[name])
+			opts := options(dir)
+			opts.Catalogue = catalogue(t, table)
+			run(t, store, opts)
+		}
+		motions := map[int64]int{}
+		err := store.View(t.Context(), func(v *db.Snapshot) error {
+			found, err := v.Versions(t.Context())
+			for _, c := range found {
+				motions[c.MotionID]++
+			}
+			return err
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+		if len(motions) != 1 {
+			t.Errorf("%v: motions held several times %v, want one", files, motions)
+		}
+		for _, n := range motions {
+			if n != 4 {
+				t.Errorf("%v: %d components of one motion, want 4", files, n)
+			}
+		}
+	}
+}
+
+// duplicates lists the components with the record of the first that holds the same
+// motion.
 func duplicates(t *testing.T, store *db.Store) string {
 	t.Helper()
-	var of map[db.ComponentKey]string
-	err := store.View(t.Context(), func(v *db.Snapshot) (err error) {
-		of, err = v.Duplicates(t.Context())
+	first := map[int64]string{}
+	of := map[string]string{}
+	err := store.View(t.Context(), func(v *db.Snapshot) error {
+		found, err := v.Versions(t.Context())
+		for _, c := range found { // in the order of component ids
+			if first[c.MotionID] == "" {
+				first[c.MotionID] = c.RecordCode
+			} else {
+				of[c.RecordCode+c.Role] = first[c.MotionID]
+			}
+		}
 		return err
 	})
 	if err != nil {
@@ -66,37 +113,7 @@ func duplicates(t *testing.T, store *db.Store) string {
 	}
 	var out []string
 	for _, c := range componentsOf(t, store) {
-		code := of[db.ComponentKey{RecordID: c.RecordID, Role: c.Role}]
-		if code == "" {
-			code = "-"
-		}
-		out = append(out, c.Record.Code+" "+c.Role+" "+code)
+		out = append(out, c.Record.Code+" "+c.Role+" "+cmp.Or(of[c.Record.Code+c.Role], "-"))
 	}
 	return strings.Join(out, ", ")
-}
-
-func TestByPreference(t *testing.T) {
-	record := func(id int64, edit func(*db.Version)) db.Version {
-		v := db.Version{RecordID: id, RecordCode: fmt.Sprint("R", id), Component: db.Component{
-			Role: db.RoleH1, Processing: "raw", StepS: 0.01, Samples: 1000, SourcePath: fmt.Sprint("p", id)}}
-		edit(&v)
-		return v
-	}
-	second := record(5, func(v *db.Version) { v.Role = db.RoleH2 })
-	found := []db.Version{
-		record(1, func(*db.Version) {}),
-		record(2, func(v *db.Version) { v.Samples = 2000 }),
-		record(3, func(v *db.Version) { v.Processing, v.LowCutHz, v.HighCutHz = "corrected", value(0.2), value(20) }),
-		record(4, func(v *db.Version) { v.Processing, v.LowCutHz, v.HighCutHz = "corrected", value(0.1), value(20) }),
-		record(5, func(*db.Version) {}), second,
-		record(6, func(v *db.Version) { v.Processing = "mean-removed" }),
-		record(7, func(v *db.Version) { v.Start = time.Now() }),
-	}
-	var got []string
-	for _, r := range byPreference(found) {
-		got = append(got, r[0].RecordCode)
-	}
-	if want := "[R5 R4 R3 R6 R2 R1 R7]"; fmt.Sprint(got) != want {
-		t.Errorf("got %v, want %s", got, want)
-	}
 }

@@ -19,12 +19,12 @@ type writer struct {
 	source  *source
 	done    int
 	summary Summary
-	settler *settler              // of the batch in hand
-	known   map[db.Statement]bool // what settlers know to be stated
+	settler *settler                // of the batch in hand
+	known   map[db.Statement]string // what settlers know to be stated
 }
 
 func newWriter(store Store, run state, opts Options, src *source) *writer {
-	return &writer{store: store, run: run, opts: opts, source: src, known: map[db.Statement]bool{}}
+	return &writer{store: store, run: run, opts: opts, source: src, known: map[db.Statement]string{}}
 }
 
 // files brings the files to the store.

@@ -26,7 +26,7 @@ func BenchmarkWriter(b *testing.B) {
 	var results []result
 	for b.Loop() {
 		b.StopTimer()
-		store, err := db.Create(b.Context(), filepath.Join(b.TempDir(), "store.db"))
+		store, err := db.Create(b.Context(), filepath.Join(b.TempDir(), "store.db"), SolverVersion)
 		if err != nil {
 			b.Fatal(err)
 		}

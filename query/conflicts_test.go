@@ -63,7 +63,7 @@ func TestConflicts(t *testing.T) {
 				return err
 			}
 		}
-		_, err = tx.SetEvent(t.Context(), other.EventID, key.EventID, *quakeA)
+		_, err = tx.SetEvent(t.Context(), other.EventID, key.EventID, quakeA.Origin, *quakeA)
 		return err
 	})
 	if err != nil {

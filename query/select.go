@@ -58,9 +58,6 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	p.hint, p.leftOut = p.hintOf(), map[string]int{}
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
-	if p.duplicates, err = snapshot.Duplicates(ctx); err != nil {
-		return nil, err
-	}
 	if err := p.findRotated(ctx, snapshot, details, held); err != nil {
 		return nil, err
 	}
@@ -69,7 +66,28 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 			return nil, err
 		}
 	}
+	if err := p.dropRepeated(ctx, snapshot); err != nil {
+		return nil, err
+	}
 	return &p.picked, p.finish()
+}
+
+// dropRepeated leaves out the motions that another one holds in a better version,
+// or names that where all are asked for.
+func (p *picker) dropRepeated(ctx context.Context, snapshot *db.Snapshot) error {
+	versions, err := readVersions(ctx, snapshot)
+	if err != nil {
+		return err
+	}
+	repeated := versions.repeated(p.motions)
+	for i, code := range repeated {
+		p.motions[i].versionOf = code
+		repeated[i] = "another version of the motion is taken"
+	}
+	if !p.selection.IncludeDuplicates {
+		p.drop(repeated)
+	}
+	return nil
 }
 
 // byRecord yields the components of one record after another.
@@ -104,8 +122,6 @@ type picker struct {
 	// the records of those whose peaks could not be computed.
 	rotated map[string]map[int64]db.Peaks
 	damaged map[int64]bool
-	// duplicates has the code of the record from which the motion is taken instead.
-	duplicates map[db.ComponentKey]string
 }
 
 // take looks at the components of one record. A record counts once as unmet if
@@ -129,7 +145,6 @@ func (p *picker) take(components []db.HeldComponent) error {
 			}
 		case met:
 			unmet = false
-			m.versionOf = p.versionOf(&m)
 			p.motions = append(p.motions, m)
 		}
 	}
@@ -153,25 +168,12 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
-	case !p.selection.IncludeDuplicates && p.versionOf(m) != "":
-		return "another version of the motion is taken", false, nil
 	case p.details&db.DetailPeaks != 0 && m.hasDamagedPeaks():
 		return reasonDamaged, false, nil
 	case unknown != "":
 		return unknown + " unknown", false, nil
 	}
 	return "", true, nil
-}
-
-// versionOf returns the code of the record from which one of the motion's
-// components is taken instead, "" where there is none.
-func (p *picker) versionOf(m *motion) string {
-	for _, c := range m.members {
-		if code := p.duplicates[db.ComponentKey{RecordID: c.RecordID, Role: c.Role}]; code != "" {
-			return code
-		}
-	}
-	return ""
 }
 
 func (m *motion) hasDamagedPeaks() bool {
@@ -206,6 +208,12 @@ func (p *picked) leaveOut(reasons map[int]string) error {
 	if len(reasons) == 0 {
 		return nil
 	}
+	p.drop(reasons)
+	return p.finish()
+}
+
+// drop is leaveOut without the account that finish gives.
+func (p *picked) drop(reasons map[int]string) {
 	type cause struct {
 		record int64
 		reason string
@@ -224,7 +232,6 @@ func (p *picked) leaveOut(reasons map[int]string) error {
 		}
 	}
 	p.motions = kept
-	return p.finish()
 }
 
 // finish counts what the motions are of. The error is an EmptyError where there is

@@ -190,7 +190,7 @@ func TestSpectrumMistakes(t *testing.T) {
 		_, err := c.question.Ask(t.Context(), store)
 		checkUsage(t, c.want, err, c.want)
 	}
-	empty, err := db.Create(t.Context(), t.TempDir()+"/empty.db")
+	empty, err := db.Create(t.Context(), t.TempDir()+"/empty.db", spectrum.Version)
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -80,7 +80,7 @@ func handRecords() []inventedRecord {
 func newStore(t testing.TB, grid db.Grid, records []inventedRecord) *db.Store {
 	t.Helper()
 	ctx := context.Background()
-	store, err := db.Create(ctx, filepath.Join(t.TempDir(), "invented.db"))
+	store, err := db.Create(ctx, filepath.Join(t.TempDir(), "invented.db"), spectrum.Version)
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -10,6 +10,7 @@ import (
 	"github.com/urfave/cli/v2"
 
 	"swaybook/db"
+	"swaybook/pipeline"
 	"swaybook/pipeline/demo"
 	"swaybook/query"
 )
@@ -98,7 +99,7 @@ func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
 	if err := demoIngest(ctx, o, written.Catalogue, w); err != nil {
 		return err
 	}
-	store, err := db.Open(ctx, o.store)
+	store, err := db.Open(ctx, o.store, pipeline.SolverVersion)
 	if err != nil {
 		return err
 	}

@@ -81,7 +81,7 @@ func noArguments(c *cli.Context) error {
 
 // withStore opens the store for reading around f.
 func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
-	store, err := db.Open(c.Context, storePath(c))
+	store, err := db.Open(c.Context, storePath(c), pipeline.SolverVersion)
 	if errors.Is(err, db.ErrNoStore) {
 		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH", err, storePath(c))
 	}

@@ -157,7 +157,7 @@ func (o *ingestOptions) readCatalogue(name string) error {
 
 // runIngest fills the store and prints the summary.
 func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
-	store, err := db.Create(ctx, o.store)
+	store, err := db.Create(ctx, o.store, pipeline.SolverVersion)
 	if err != nil {
 		return err
 	}

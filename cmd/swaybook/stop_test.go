@@ -109,7 +109,7 @@ func stop(t *testing.T, cmd *exec.Cmd, store string, sig os.Signal) {
 }
 
 func componentsIn(ctx context.Context, path string) (n int) {
-	store, err := db.Open(ctx, path)
+	store, err := db.Open(ctx, path, pipeline.SolverVersion)
 	if err != nil {
 		return 0
 	}

@@ -1,0 +1,147 @@
+package query
+
+import (
+	"cmp"
+	"context"
+	"math"
+	"slices"
+	"strings"
+
+	"swaybook/db"
+)
+
+// versions say which components hold one motion, and of which record statistics
+// take it first.
+type versions struct {
+	motion map[componentKey]int64
+	rank   map[int64]int // by record; none where no other holds one of its motions
+	code   map[int64]string
+}
+
+// componentKey is a component's record and role.
+type componentKey struct {
+	record int64
+	role   string
+}
+
+func readVersions(ctx context.Context, snapshot *db.Snapshot) (versions, error) {
+	found, err := snapshot.Versions(ctx)
+	if err != nil {
+		return versions{}, err
+	}
+	v := versions{motion: map[componentKey]int64{}, rank: map[int64]int{}, code: map[int64]string{}}
+	byRecord := map[int64][]*db.Version{}
+	for i := range found {
+		c := &found[i]
+		v.motion[componentKey{c.RecordID, c.Role}] = c.MotionID
+		v.code[c.RecordID] = c.RecordCode
+		byRecord[c.RecordID] = append(byRecord[c.RecordID], c)
+	}
+	for rank, id := range byPreference(byRecord) {
+		v.rank[id] = rank
+	}
+	return v, nil
+}
+
+// byPreference orders records, the one first of which statistics take a motion: one
+// with both horizontals before one without, corrected before raw, then the wider
+// usable band, the longer motion, and the earlier path.
+func byPreference(records map[int64][]*db.Version) []int64 {
+	var ids []int64
+	for id := range records {
+		ids = append(ids, id)
+	}
+	slices.SortFunc(ids, func(i, j int64) int {
+		a, b := records[i], records[j]
+		return cmp.Or(
+			cmp.Compare(horizontals(b), horizontals(a)),
+			cmp.Compare(processingRank(a[0].Processing), processingRank(b[0].Processing)),
+			cmp.Compare(usableBand(b[0]), usableBand(a[0])),
+			cmp.Compare(float64(b[0].Samples)*b[0].StepS, float64(a[0].Samples)*a[0].StepS),
+			strings.Compare(a[0].SourcePath, b[0].SourcePath),
+			strings.Compare(a[0].RecordCode, b[0].RecordCode))
+	})
+	return ids
+}
+
+func horizontals(components []*db.Version) int {
+	n := 0
+	for _, v := range components {
+		if v.Role == db.RoleH1 || v.Role == db.RoleH2 {
+			n++
+		}
+	}
+	return n
+}
+
+// processingRank is low for what is ready for use.
+func processingRank(state string) int {
+	order := []string{"corrected", "mean-removed", "unknown", "raw"}
+	if at := slices.Index(order, state); at >= 0 {
+		return at
+	}
+	return len(order)
+}
+
+// usableBand is the logarithm of the ratio of the corner frequencies, 0 where one
+// is not stated.
+func usableBand(v *db.Version) float64 {
+	if v.LowCutHz == nil || v.HighCutHz == nil || !(*v.LowCutHz > 0) {
+		return 0
+	}
+	return math.Log(*v.HighCutHz / *v.LowCutHz)
+}
+
+// repeated returns, by position, the motions that one before them by preference
+// holds too, with the code of its record. A pair repeats what shares one of its
+// components.
+func (v *versions) repeated(motions []motion) map[int]string {
+	if len(v.motion) == 0 {
+		return nil
+	}
+	var order []int
+	for i := range motions {
+		if len(v.motionsOf(&motions[i])) > 0 {
+			order = append(order, i)
+		}
+	}
+	record := func(i int) int64 { return motions[i].members[0].RecordID }
+	slices.SortStableFunc(order, func(i, j int) int { return cmp.Compare(v.rank[record(i)], v.rank[record(j)]) })
+	type held struct {
+		motion int64
+		role   string // "" of single components: their roles may differ
+	}
+	taken := map[held]int64{} // the record that has it
+	out := map[int]string{}
+	for _, i := range order {
+		m := &motions[i]
+		role := ""
+		if len(m.members) > 1 {
+			role = m.role
+		}
+		ids := v.motionsOf(m)
+		for _, id := range ids {
+			if by, ok := taken[held{id, role}]; ok && by != record(i) {
+				out[i] = v.code[by]
+			}
+		}
+		if out[i] != "" {
+			continue
+		}
+		for _, id := range ids {
+			taken[held{id, role}] = record(i)
+		}
+	}
+	return out
+}
+
+// motionsOf are the motions of the members that others hold too.
+func (v *versions) motionsOf(m *motion) []int64 {
+	var out []int64
+	for _, c := range m.members {
+		if id := v.motion[componentKey{c.RecordID, c.Role}]; id != 0 {
+			out = append(out, id)
+		}
+	}
+	return out
+}
