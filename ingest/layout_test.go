@@ -168,19 +168,17 @@ func TestLayoutOfBlocks(t *testing.T) {
 	})
 }
 
-// TestLayoutOutcomes has the damages that every reader must see.
-func TestLayoutOutcomes(t *testing.T) {
+// TestLayoutRefusals has what is refused beside the damages of TestOutcomes.
+func TestLayoutRefusals(t *testing.T) {
 	hints := Hints{Layouts: exampleLayouts(t)}
 	quay, tower := quayLogger(197), towerTable(160)
 	checkRefusals(t, []refusal{
-		{"truncated", quay[:20], hints, `case:20: samples: truncated: no line matches data.ends_with "^END$" after 100 values`},
-		{"wrong count", edit(t, quay, 7, "197", "200"), hints, `case:31: samples: announced 200 values, found 197`},
-		{"wrong unit", quay, Hints{Layouts: hints.Layouts, Unit: "g", UnitFrom: "catalogue line 3"}, `case: unit: the file says gal, catalogue line 3 says g`},
+		{"more announced", edit(t, quay, 7, "197", "200"), hints, `case:31: samples: announced 200 values, found 197`},
+		{"another unit in the catalogue", quay, Hints{Layouts: hints.Layouts, Unit: "g", UnitFrom: "catalogue line 3"}, `case: unit: the file says gal, catalogue line 3 says g`},
 		{"wrong scale", edit(t, quay, 8, "0.00025", "0.0025"), hints, `case:11: peak: samples reach 24.975 m/s², the header says 2.4975 m/s²`},
 		{"scale of zero", edit(t, quay, 8, "0.00025", "0"), hints, `case:8: scale: expected a number over zero, found "0"`},
 		{"no scale", without(quay, 8, 8), hints, `case:9: scale: not found: no line from 1 to 9 gives it by the pattern "^SCALE +(?P<scale>\\S+) GAL/COUNT"`},
 		{"wrong step", quay, Hints{Layouts: hints.Layouts, StepS: 0.01, StepFrom: "catalogue line 3"}, `case:7: dt: the file says 0.005 s, catalogue line 3 says 0.01 s`},
-		{"junk appended", head(quay, []string{"", "<html>"}), hints, `case:33: samples: text "<html>" after the end of the data`},
 		{"a line of text", edit(t, quay, 15, quay[14], "error in logger"), hints, `case:15: samples: expected a number, found "error i"`},
 		{"a field too many", edit(t, quay, 15, quay[14], quay[14]+"      1"), hints, `case:15: samples: text "1" after the 10 values of the line`},
 		{"a field is blank", edit(t, quay, 15, quay[14][:14], quay[14][:7]+"       "), hints, `case:15: samples: value 2 of the line is blank`},
@@ -196,9 +194,6 @@ func TestLayoutOutcomes(t *testing.T) {
 		{"decimal point", edit(t, tower, 12, "1,31000", "1.31000"), hints, `case:12: samples: expected a number, found "1.31000"`},
 		{"blank lines", edit(t, tower, 20, tower[19], "\n\n"+tower[19]), hints, `case:22: samples: 2 blank lines inside the data: a second record?`},
 	})
-	if _, _, err := parseLines([]string{""}, hints); err == nil || err.Error() != "case: file holds only blanks" {
-		t.Errorf("empty: %v", err)
-	}
 }
 
 // A file that two formats recognise is rejected, whether they are built in or
