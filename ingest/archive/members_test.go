@@ -304,3 +304,25 @@ func TestSkip(t *testing.T) {
 		t.Errorf("got\n%s\nwant\n%s", got, want)
 	}
 }
+
+// Passing over the members of a tar finds its damage as reading them does.
+func TestDamageBehindSkippedMembers(t *testing.T) {
+	whole := tarOf(t, file{"a", strings.Repeat("x", 3000)}, file{"b", strings.Repeat("x", 3000)})
+	second := blockSize + 6*blockSize // a header and 3000 bytes
+	for _, tt := range []struct {
+		name string
+		data []byte
+		want string
+	}{
+		{"whole", whole, "a~no\nb~no"},
+		{"truncated in a member", whole[:second+blockSize+1500], "a~no\nb~no\n!b: behind it: the data end in the middle: truncated?"},
+		{"truncated behind a member", whole[:len(whole)-2*blockSize], "a~no\nb~no\n!ends without an end mark: truncated?"},
+	} {
+		for kind, data := range map[string][]byte{"tar": tt.data, "tar.gz": gzipOf(t, tt.data)} {
+			got := listed(t.Context(), data, "a", Options{Limits: testLimits(), Skip: func(string) string { return "no" }})
+			if got != tt.want {
+				t.Errorf("%s, %s: got\n%s\nwant\n%s", kind, tt.name, got, tt.want)
+			}
+		}
+	}
+}

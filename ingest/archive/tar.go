@@ -94,6 +94,17 @@ func (t *tarBlocks) Read(p []byte) (int, error) {
 	return n, err
 }
 
+// Seek lets the library pass over members that nobody reads; where the bytes come
+// from a decompressor it reads them after the error.
+func (t *tarBlocks) Seek(offset int64, whence int) (int64, error) {
+	s, ok := t.r.(io.Seeker)
+	if !ok {
+		return 0, errors.ErrUnsupported
+	}
+	t.zeros = 0
+	return s.Seek(offset, whence)
+}
+
 // end looks whether the archive had its end mark, and reads what follows: nothing
 // but zeros may, up to the end of the file, where a compressor has its checksum.
 func (t *tarBlocks) end() error {
