@@ -176,7 +176,7 @@ func recognise(c *Content, textErr error, layouts Layouts) (Format, error) {
 		return nil, textErr
 	}
 	if kind := fdsnxml.Kind(c.Data); kind != "" {
-		return nil, &NotMotionError{kind + ", not used: only files named *.xml are, and those of --metadata"}
+		return nil, &NotMotionError{kind + ", not used: only files named *.xml are, alone or in archives named as such, and those of --metadata"}
 	}
 	if err := notMotion(c.Text); err != nil {
 		return nil, err

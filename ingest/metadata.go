@@ -14,8 +14,8 @@ import (
 )
 
 // Metadata is what StationXML and QuakeML documents say of channels, stations
-// and events. Its methods may be called from several goroutines at once, Add
-// excepted.
+// and events. Its methods may be called from several goroutines at once, those
+// that add excepted.
 type Metadata struct {
 	inventory fdsnxml.Inventory
 	events    []CatalogueEvent
@@ -56,7 +56,7 @@ func (m *Metadata) addPath(path string) error {
 		return fmt.Errorf("read metadata: %w", err)
 	}
 	if !info.IsDir() {
-		used, err := m.Add(path)
+		used, err := m.AddFile(path)
 		if err == nil && used == "" {
 			err = &ParseError{Path: path, Err: errors.New("neither StationXML nor QuakeML")}
 		}
@@ -68,7 +68,7 @@ func (m *Metadata) addPath(path string) error {
 	}
 	for _, e := range entries {
 		if !e.IsDir() && MayBeMetadata(e.Name()) {
-			if _, err := m.Add(filepath.Join(path, e.Name())); err != nil {
+			if _, err := m.AddFile(filepath.Join(path, e.Name())); err != nil {
 				return err
 			}
 		}
@@ -81,13 +81,19 @@ func MayBeMetadata(base string) bool {
 	return strings.EqualFold(filepath.Ext(base), ".xml") && SkipByName(base) == ""
 }
 
-// Add reads one more document and says how it is used, "" where it is neither
-// StationXML nor QuakeML. An error is a *ParseError; nothing is added with it.
-func (m *Metadata) Add(path string) (used string, err error) {
+// AddFile is Add of the file at path.
+func (m *Metadata) AddFile(path string) (used string, err error) {
 	data, _, err := Read(path)
 	if err != nil {
 		return "", err
 	}
+	return m.Add(path, data)
+}
+
+// Add reads one more document, which lies at path, and says how it is used, ""
+// where it is neither StationXML nor QuakeML. An error is a *ParseError; nothing
+// is added with it. The data are not kept.
+func (m *Metadata) Add(path string, data []byte) (used string, err error) {
 	switch fdsnxml.Kind(data) {
 	case fdsnxml.Stations:
 		v, err := fdsnxml.ReadStations(data)

@@ -444,7 +444,7 @@ func TestMetadataRefusals(t *testing.T) {
 		t.Error("a path that is not there: no error")
 	}
 	_, _, err := Parse("f", []byte("<FDSNStationXML/>"), Hints{})
-	if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != "StationXML, not used: only files named *.xml are, and those of --metadata" {
+	if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != "StationXML, not used: only files named *.xml are, alone or in archives named as such, and those of --metadata" {
 		t.Errorf("StationXML as a record: %v", err)
 	}
 }

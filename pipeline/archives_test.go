@@ -15,6 +15,7 @@ import (
 	"strings"
 	"testing"
 
+	"swaybook/db"
 	"swaybook/ingest"
 )
 
@@ -145,6 +146,96 @@ func TestArchivesGiveWhatTheirFilesGive(t *testing.T) {
 	}
 }
 
+// Documents in archives serve records wherever both lie: unpacked, in a zip, in a
+// tar with the documents behind the records, in archives inside and beside.
+func TestDocumentsInArchives(t *testing.T) {
+	fixture := func(name string) string {
+		t.Helper()
+		data, err := os.ReadFile(filepath.Join("..", "testdata", "records", "miniseed", name))
+		if err != nil {
+			t.Fatal(err)
+		}
+		return string(data)
+	}
+	record, stations, events := fixture("three-channels.mseed"), fixture("station.xml"), fixture("events.xml")
+	broken := stations[:len(stations)/2]
+	files := []packed{{"a/record.mseed", record}, {"b/broken.xml", broken}, {"b/other.xml", "<?xml version=\"1.0\"?><invented/>"}, {"b/station.xml", stations}, {"events.XML", events}}
+	last := []packed{files[0], files[4], files[3], files[2], files[1]}
+	inside := func(outer func(testing.TB, ...packed) string, inner string) string {
+		return outer(t, files[0], files[1], files[2], packed{inner, zipOf(t, packed{"b/station.xml", stations})}, files[4])
+	}
+	ways := map[string][]packed{
+		"zip":                        {{"all.zip", zipOf(t, files...)}},
+		"tar.gz":                     {{"all.tar.gz", gzipOf(t, tarOf(t, last...))}},
+		"tar of a zip":               {{"all.tar", inside(tarOf, "b.zip")}},
+		"zip of a zip":               {{"all.zip", inside(zipOf, "b.zip")}},
+		"a document under gz":        {{"a.zip", zipOf(t, files[:3]...)}, {"b/station.xml.gz", gzipOf(t, stations)}, files[4]},
+		"record and documents apart": {{"a.zip", zipOf(t, files[0])}, {"b.tgz", gzipOf(t, tarOf(t, files[1:]...))}},
+	}
+	unpacked := t.TempDir()
+	putAll(t, unpacked, files)
+	store := newStore(t)
+	want := Summary{Files: 5, Stored: 3, StoredFiles: 1, Skipped: 3, Rejected: 1, Records: 1, Rotated: 1}
+	if got := run(t, store, options(unpacked)); got != want {
+		t.Errorf("unpacked: %+v, want %+v", got, want)
+	}
+	stored := slices.Sorted(slices.Values(dump(t, store)))
+	fault := faultIn(t, store, "broken.xml")
+	for name, packed := range ways {
+		dir, other := t.TempDir(), newStore(t)
+		putAll(t, dir, packed)
+		if got := run(t, other, options(dir)); got != want {
+			t.Errorf("%s: %+v, want %+v", name, got, want)
+		}
+		if got := slices.Sorted(slices.Values(dump(t, other))); !slices.Equal(got, stored) {
+			t.Errorf("%s: the store differs\n%s\nwant\n%s", name, strings.Join(got, "\n"), strings.Join(stored, "\n"))
+		}
+		if got := faultIn(t, other, "!b/broken.xml"); got != fault {
+			t.Errorf("%s: rejected with %q, want %q", name, got, fault)
+		}
+	}
+	// By its name nothing says that this is an archive: its record is read, and waits
+	// for metadata.
+	dir := t.TempDir()
+	put(t, dir, "download", zipOf(t, files...))
+	if got := run(t, newStore(t), options(dir)); got.Stored != 0 || got.Rejected != 1 || got.Skipped != 4 {
+		t.Errorf("in an archive without a suffix: %+v", got)
+	}
+}
+
+// What documents in archives say is bounded by their bytes, since it is held.
+func TestDocumentsInArchivesAreBounded(t *testing.T) {
+	dir := t.TempDir()
+	put(t, dir, "a.zip", zipOf(t, packed{"1.xml", "<?xml version=\"1.0\"?><a/>"}, packed{"2.xml", "<b/>"}, packed{"3.V2", "invented"}))
+	file := ingest.Found{Path: filepath.Join(dir, "a.zip"), Rel: "a.zip"}
+	for left, want := range map[int]string{100: "", 26: "2.xml", 10: "1.xml 2.xml"} {
+		src := newSource([]ingest.Found{file}, nil)
+		a := openArchive(file)
+		src.readMembers(t.Context(), a, &ingest.Metadata{}, &left)
+		a.Close()
+		var refused []string
+		for name, d := range src.decided {
+			if d.err != nil {
+				refused = append(refused, strings.TrimPrefix(name, file.Path+"!"))
+			}
+		}
+		slices.Sort(refused)
+		if got := strings.Join(refused, " "); got != want {
+			t.Errorf("refused %q, want %q", got, want)
+		}
+	}
+}
+
+// faultIn is what stands against the only rejected file, whose path ends so.
+func faultIn(t *testing.T, store *db.Store, suffix string) string {
+	t.Helper()
+	all, err := store.Rejections(t.Context())
+	if err != nil || len(all) != 1 || !strings.HasSuffix(filepath.ToSlash(all[0].Path), suffix) {
+		t.Fatalf("rejections %+v, %v", all, err)
+	}
+	return fmt.Sprintf("%d: %s", all[0].Line, all[0].Cause)
+}
+
 // Sources, rejections and skipped files say in which archive they lie.
 func TestPathsInArchives(t *testing.T) {
 	dir, store := t.TempDir(), newStore(t)
@@ -254,7 +345,7 @@ func TestSourceOpensWhatItMay(t *testing.T) {
 	put(t, dir, "own.zip", zipOf(t, packed{"x", "x"}))
 	put(t, dir, "b.zip", zipOf(t, packed{"x", "x"}))
 	own, gone := filepath.Join(dir, "own.zip"), filepath.Join(dir, "gone.zip")
-	src := newSource([]ingest.Found{{Path: own, Rel: "own.zip"}, {Path: gone, Rel: "gone.zip"}, {Path: filepath.Join(dir, "b.zip"), Rel: "b.zip"}}, map[string]string{own: "own"}, nil)
+	src := newSource([]ingest.Found{{Path: own, Rel: "own.zip"}, {Path: gone, Rel: "gone.zip"}, {Path: filepath.Join(dir, "b.zip"), Rel: "b.zip"}}, map[string]string{own: "own"})
 	var got []string
 	for it := range src.items(t.Context()) {
 		got = append(got, fmt.Sprintf("%s %s %s %s %t", it.Rel, it.stem, it.skip, it.data, it.opened))

@@ -110,7 +110,7 @@ func placeAll(t *testing.T, seats []seat) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil, nil))
+	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil))
 	refused := map[string]string{}
 	for i, s := range seats {
 		res := result{

@@ -28,7 +28,8 @@ type Options struct {
 	// records: path to reason.
 	Own map[string]string
 	// Hints are what the user states for files that are silent. The run adds to
-	// their Metadata the StationXML and QuakeML documents among the files.
+	// their Metadata the StationXML and QuakeML documents among the files
+	// and in archives.
 	Hints ingest.Hints
 	// Grid is the grid asked for. An empty list asks for the store's own, or
 	// for the default in a new store.
@@ -66,12 +67,13 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	if err != nil {
 		return Summary{}, err
 	}
-	done := readMetadata(ctx, files, opts.Hints.Metadata)
+	src := newSource(files, opts.Own)
+	src.readMetadata(ctx, opts.Hints.Metadata)
 	run, err := begin(ctx, store, opts)
 	if err != nil {
 		return Summary{}, err
 	}
-	w := newWriter(store, run, opts, newSource(files, opts.Own, done))
+	w := newWriter(store, run, opts, src)
 	err = w.files(ctx)
 	if err == nil {
 		err = w.rotate(ctx)

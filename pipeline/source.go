@@ -4,8 +4,8 @@ import (
 	"cmp"
 	"context"
 	"io"
+	"io/fs"
 	"iter"
-	"maps"
 	"os"
 	"path"
 	"path/filepath"
@@ -20,15 +20,20 @@ import (
 // archives what is in them.
 type source struct {
 	files   []ingest.Found
-	decided map[string]decided // by absolute path
+	decided map[string]decided // by absolute path, of files and members
 	total   atomic.Int64       // files and members found so far
 }
 
-// newSource returns the source of the files but for those that are done, and the
-// run's own, of which the reasons are given.
-func newSource(files []ingest.Found, own map[string]string, done map[string]decided) *source {
+// decided is what becomes of a file whatever it holds.
+type decided struct {
+	reason string // why it is skipped
+	err    error  // why it is rejected
+}
+
+// newSource returns the source of the files but for the run's own, of which the
+// reasons are given.
+func newSource(files []ingest.Found, own map[string]string) *source {
 	s := &source{files: files, decided: map[string]decided{}}
-	maps.Copy(s.decided, done)
 	for name, reason := range own {
 		s.decided[absolute(name)] = decided{reason: reason}
 	}
@@ -65,19 +70,19 @@ func (s *source) file(ctx context.Context, f ingest.Found, yield func(item) bool
 	// The store itself must not even be opened: closing a file ends the locks that
 	// the process has on it.
 	done := s.decided[absolute(f.Path)]
-	it := item{Found: f, stem: stemOf(f.Path), skip: cmp.Or(done.reason, ingest.SkipByName(path.Base(filepath.ToSlash(f.Path))))}
+	it := item{Found: f, stem: stemOf(f.Path), skip: cmp.Or(done.reason, ingest.SkipByName(baseOf(f.Path)))}
 	if done.err != nil {
 		it.Err = done.err
 	}
 	if it.skip != "" || it.Err != nil {
 		return yield(it)
 	}
-	opened := openArchive(f.Path)
+	opened := openArchive(f)
 	if opened == nil {
 		return yield(it)
 	}
 	defer opened.Close()
-	return s.members(ctx, f, opened, yield)
+	return s.members(ctx, opened, yield)
 }
 
 // absolute is the path in the one form in which two can be compared; a path
@@ -89,64 +94,85 @@ func absolute(name string) string {
 	return name
 }
 
+// openedArchive is a file that is an archive.
+type openedArchive struct {
+	*os.File
+	found ingest.Found
+	info  fs.FileInfo
+}
+
 // openArchive opens the file if it is an archive. What cannot be read is none: the
 // worker says why.
-func openArchive(name string) *os.File {
-	f, err := os.Open(name)
+func openArchive(found ingest.Found) *openedArchive {
+	f, err := os.Open(found.Path)
 	if err != nil {
 		return nil
 	}
 	head := make([]byte, archive.HeadSize)
 	n, err := io.ReadFull(f, head)
-	if err != nil && err != io.EOF && err != io.ErrUnexpectedEOF || !archive.Is(head[:n]) {
+	if err == io.EOF || err == io.ErrUnexpectedEOF {
+		err = nil
+	}
+	info, statErr := f.Stat()
+	if err != nil || statErr != nil || !archive.Is(head[:n]) {
 		f.Close()
 		return nil
 	}
-	return f
+	return &openedArchive{f, found, info}
 }
 
-// members passes on what is in the archive f. In the count of what was found its
+// members reads what is in the archive; skip says why a member need not be read.
+func (a *openedArchive) members(ctx context.Context, skip func(name string) string) iter.Seq2[archive.Member, error] {
+	options := archive.Options{Limits: archive.DefaultLimits(ingest.MaxFileSize), Skip: skip}
+	return archive.Members(ctx, a, a.info.Size(), baseOf(a.found.Path), options)
+}
+
+// members passes on what is in the archive. In the count of what was found its
 // first member, or its own rejection, takes its place.
-func (s *source) members(ctx context.Context, f ingest.Found, file *os.File, yield func(item) bool) bool {
-	info, err := file.Stat()
-	if err != nil {
-		f.Err = err
-		return yield(item{Found: f})
-	}
-	if !yield(item{Found: f, opened: true}) {
+func (s *source) members(ctx context.Context, a *openedArchive, yield func(item) bool) bool {
+	if !yield(item{Found: a.found, opened: true}) {
 		return false
 	}
 	more := int64(0)
-	base := path.Base(filepath.ToSlash(f.Path))
-	options := archive.Options{Limits: archive.DefaultLimits(ingest.MaxFileSize), Skip: ingest.SkipMember}
-	for m, err := range archive.Members(ctx, file, info.Size(), base, options) {
+	for m, err := range a.members(ctx, ingest.SkipMember) {
 		if ctx.Err() != nil {
 			return false
 		}
 		s.total.Add(more)
 		more = 1
-		if !yield(memberItem(f, m, err, info.ModTime())) {
+		if !yield(s.memberItem(a, m, err)) {
 			return false
 		}
 	}
 	return true
 }
 
-// memberItem is a member of f, or what stands against it, or against f.
-func memberItem(f ingest.Found, m archive.Member, err error, modified time.Time) item {
-	it := item{Found: f, skip: m.Skipped, isMember: true, data: m.Data, modified: m.Modified}
+// memberItem is a member of the archive, or what stands against it, or against the
+// archive.
+func (s *source) memberItem(a *openedArchive, m archive.Member, err error) item {
+	it := item{Found: a.found, skip: m.Skipped, isMember: true, data: m.Data, modified: m.Modified}
 	if m.Name != "" {
-		it.Found = f.Member(m.Name)
-		parts := archive.Split(m.Name)
-		it.stem = stemOf(parts[len(parts)-1])
+		it.Found = a.found.Member(m.Name)
+		it.stem = stemOf(memberBase(m))
 	}
 	if it.Err = err; m.Modified.IsZero() {
-		it.modified = modified
+		it.modified = a.info.ModTime()
+	}
+	if done, ok := s.decided[absolute(it.Path)]; ok && err == nil {
+		it.skip, it.Err = cmp.Or(it.skip, done.reason), done.err
 	}
 	return it
 }
 
+// memberBase is the base name of a member.
+func memberBase(m archive.Member) string {
+	parts := archive.Split(m.Name)
+	return path.Base(parts[len(parts)-1])
+}
+
 func stemOf(file string) string {
-	base := path.Base(filepath.ToSlash(file))
+	base := baseOf(file)
 	return base[:len(base)-len(path.Ext(base))]
 }
+
+func baseOf(file string) string { return path.Base(filepath.ToSlash(file)) }

@@ -10,7 +10,7 @@ import (
 
 // BenchmarkSource goes through files that are no archives, and through the same in
 // one: what the dispatcher adds to the reading of a file, and all of the reading
-// of a member.
+// of a member; and what it costs to look for documents among them before.
 func BenchmarkSource(b *testing.B) {
 	const n = 300
 	dir := b.TempDir()
@@ -32,12 +32,19 @@ func BenchmarkSource(b *testing.B) {
 			b.ReportAllocs()
 			bytes := 0
 			for b.Loop() {
-				for it := range newSource(found, nil, nil).items(b.Context()) {
+				for it := range newSource(found, nil).items(b.Context()) {
 					bytes += len(it.data)
 				}
 			}
 			b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*n), "ns/file")
 			b.ReportMetric(float64(bytes)/1e6/b.Elapsed().Seconds(), "MB/s")
+		})
+		b.Run(name+", documents", func(b *testing.B) {
+			b.ReportAllocs()
+			for b.Loop() {
+				newSource(found, nil).readMetadata(b.Context(), &ingest.Metadata{})
+			}
+			b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*n), "ns/file")
 		})
 	}
 }
