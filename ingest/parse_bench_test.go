@@ -1,15 +1,25 @@
 package ingest
 
 import (
+	"archive/tar"
+	"archive/zip"
+	"bytes"
+	"compress/gzip"
+	"errors"
+	"fmt"
 	"math"
 	"strings"
 	"testing"
+
+	"swaybook/ingest/archive"
 )
 
-// BenchmarkParse reads whole files, from bytes to checked channels, through
-// every reader.
-func BenchmarkParse(b *testing.B) {
-	const n = 20000
+// benchSamples is how many samples a channel of the benchmarks' files has.
+const benchSamples = 20000
+
+// benchFiles are long files of every format, by the format's name.
+func benchFiles(b *testing.B) map[string][]byte {
+	const n = benchSamples
 	v2, cosmos, at2, counts, smc := v2Bridge, cosmosBase, at2North, knetNS, smcNorth
 	v2.n, v2.x = n, ring(n, 25, 1.99, 0.999)
 	cosmos.x = ring(n, -213.4, 1.99, 0.999)
@@ -19,49 +29,147 @@ func BenchmarkParse(b *testing.B) {
 	v1, nz := v1East, nzRaw[0]
 	v1.n, v1.x = n, ring(n, 0.312, 1.99, 0.999)
 	nz.x = ring(n, 2080.5, 1.99, 0.999)
+	files := map[string][]byte{"miniseed": benchMiniSEED()}
 	for name, lines := range map[string][]string{
 		"california-v2": v2.lines(), "cosmos": cosmos.lines(), "at2": at2.lines(), "knet": counts.lines(),
 		"esm":           newESM("HNE", 0.005, ring(n, 150, 1.99, 0.999)).lines(),
 		"jma-csv":       jmaLong(n),
-		"plain":         timed(even(n, 0.005), "%.3f", " "),
+		"plain":         head([]string{"# unit: g"}, timed(even(n, 0.005), "%.3f", " ")),
 		"california-v1": v1.lines(), "smc": smc.lines(), "new-zealand": nzFile([]nzSample{nz, nz, nz}),
+		"quay-logger": quayLogger(n), "tower-table": towerTable(n),
 	} {
-		hints := Hints{}
-		if name == "plain" {
-			hints.Unit = "g"
-		}
-		data := []byte(strings.Join(lines, "\r\n"))
-		b.Run(name, func(b *testing.B) {
-			b.SetBytes(int64(len(data)))
-			b.ReportAllocs()
-			for b.Loop() {
-				if format, _, err := Parse("f", data, hints); err != nil || format != name {
-					b.Fatal(format, err)
-				}
-			}
-		})
+		files[name] = []byte(strings.Join(lines, "\r\n"))
 	}
+	return files
 }
 
-// BenchmarkParseMiniSEED reads a file of three channels in Steim-2; bytes are
-// those of the file.
-func BenchmarkParseMiniSEED(b *testing.B) {
+// benchMiniSEED is three channels in Steim-2.
+func benchMiniSEED() []byte {
 	var data []byte
 	for _, channel := range []string{"HNE", "HNN", "HNZ"} {
 		r := mseedRecord(channel, 100, 310_000)
-		x := ring(20000, 310_000, 1.99, 0.999)
+		x := ring(benchSamples, 310_000, 1.99, 0.999)
 		for i := range x {
 			x[i] = math.Round(x[i])
 		}
 		r.Samples, r.Length = x, 4096
 		data = append(data, r.Series(2)...)
 	}
+	return data
+}
+
+// BenchmarkParse reads whole files of every format, from bytes to checked
+// channels. Bytes are those of the file; decoded are those of the samples as
+// float64.
+func BenchmarkParse(b *testing.B) {
 	hints := mseedHints(b)
-	b.SetBytes(int64(len(data)))
-	b.ReportAllocs()
-	for b.Loop() {
-		if _, channels, err := Parse("f", data, hints); err != nil || len(channels) != 3 {
-			b.Fatal(len(channels), err)
+	hints.Layouts = exampleLayouts(b)
+	files := benchFiles(b)
+	for _, info := range Formats(hints.Layouts) {
+		data := files[info.Name]
+		b.Run(info.Name, func(b *testing.B) {
+			if data == nil {
+				b.Fatal("no file of the format")
+			}
+			b.SetBytes(int64(len(data)))
+			b.ReportAllocs()
+			samples := 0
+			for b.Loop() {
+				format, channels, err := Parse("f", data, hints)
+				if err != nil || format != info.Name {
+					b.Fatal(format, err)
+				}
+				for i := range channels {
+					samples += len(channels[i].Acceleration)
+				}
+			}
+			b.ReportMetric(float64(8*samples)/1e6/b.Elapsed().Seconds(), "decoded-MB/s")
+		})
+	}
+}
+
+// BenchmarkParseArchive reads text files out of the kinds of archive. Bytes are
+// those of the files in it.
+func BenchmarkParseArchive(b *testing.B) {
+	const n = 8
+	data := benchFiles(b)["at2"]
+	tarred := benchTar(b, data, n)
+	for _, c := range []struct {
+		name    string
+		content []byte
+		members int
+	}{
+		{"zip", benchZip(b, data, n), n}, {"tar", tarred, n}, {"tar.gz", benchGzip(b, tarred), n}, {"gz", benchGzip(b, data), 1},
+		{"tar.gz in a zip", benchZip(b, benchGzip(b, tarred), 1), n},
+	} {
+		b.Run(c.name, func(b *testing.B) {
+			b.SetBytes(int64(c.members * len(data)))
+			b.ReportAllocs()
+			options := archive.Options{Limits: archive.DefaultLimits(MaxFileSize)}
+			for b.Loop() {
+				members := 0
+				for m, err := range archive.Members(b.Context(), bytes.NewReader(c.content), int64(len(c.content)), c.name, options) {
+					if err == nil {
+						_, _, err = Parse(m.Name, m.Data, Hints{})
+					}
+					if err != nil {
+						b.Fatal(err)
+					}
+					members++
+				}
+				if members != c.members {
+					b.Fatal(members)
+				}
+			}
+		})
+	}
+}
+
+func benchZip(b *testing.B, data []byte, n int) []byte {
+	b.Helper()
+	var out bytes.Buffer
+	z := zip.NewWriter(&out)
+	for i := range n {
+		w, err := z.Create(fmt.Sprint(i))
+		if err == nil {
+			_, err = w.Write(data)
+		}
+		if err != nil {
+			b.Fatal(err)
 		}
 	}
+	if err := z.Close(); err != nil {
+		b.Fatal(err)
+	}
+	return out.Bytes()
+}
+
+func benchTar(b *testing.B, data []byte, n int) []byte {
+	b.Helper()
+	var out bytes.Buffer
+	w := tar.NewWriter(&out)
+	for i := range n {
+		err := w.WriteHeader(&tar.Header{Name: fmt.Sprint(i), Typeflag: tar.TypeReg, Size: int64(len(data)), Mode: 0o644})
+		if err == nil {
+			_, err = w.Write(data)
+		}
+		if err != nil {
+			b.Fatal(err)
+		}
+	}
+	if err := w.Close(); err != nil {
+		b.Fatal(err)
+	}
+	return out.Bytes()
+}
+
+func benchGzip(b *testing.B, data []byte) []byte {
+	b.Helper()
+	var out bytes.Buffer
+	w := gzip.NewWriter(&out)
+	_, err := w.Write(data)
+	if err := errors.Join(err, w.Close()); err != nil {
+		b.Fatal(err)
+	}
+	return out.Bytes()
 }
