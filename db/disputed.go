@@ -17,6 +17,12 @@ type Disputed struct {
 // code, that which is shown first.
 const AttributeCode = "code"
 
+// What stands for who states a code: association does, which shows the first.
+const (
+	firstCode = "first code"
+	otherCode = "other code"
+)
+
 // Disputed returns the attributes of which several values are stated, by kind,
 // code and attribute; and the earthquakes that have several codes, as such an
 // attribute. What is stated of an event under any of its codes is one list.
@@ -26,7 +32,7 @@ func (s *Snapshot) Disputed(ctx context.Context) ([]Disputed, error) {
 			SELECT t.subject, coalesce(e.primary_id, t.subject_id) AS id, t.attribute, t.stated_by, t.value, t.source
 			FROM statement t LEFT JOIN event e ON t.subject = 'event' AND e.id = t.subject_id
 			UNION ALL
-			SELECT 'event', coalesce(primary_id, id), '`+AttributeCode+`', iif(primary_id IS NULL, '`+ByCatalogue+`', '`+ByHeader+`'), code, '' FROM event
+			SELECT 'event', coalesce(primary_id, id), '`+AttributeCode+`', iif(primary_id IS NULL, '`+firstCode+`', '`+otherCode+`'), code, '' FROM event
 		), several AS (
 			SELECT subject, id, attribute FROM shown GROUP BY subject, id, attribute HAVING count(DISTINCT value) > 1
 		)

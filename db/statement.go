@@ -51,8 +51,8 @@ const (
 	ByHeader    = "header"
 )
 
-// statedBy lists them in that order.
-var statedBy = []string{ByCatalogue, ByMetadata, ByComputed, ByHeader}
+// statedBy lists them in that order, between the two kinds of codes.
+var statedBy = []string{firstCode, ByCatalogue, ByMetadata, ByComputed, ByHeader, otherCode}
 
 // Statement is one value that somebody gives an attribute.
 type Statement struct {
