@@ -84,6 +84,17 @@ func (t *Tx) State(ctx context.Context, s Statement) (isNew bool, err error) {
 	return true, nil
 }
 
+// CopyStatements gives a subject what headers and metadata state of another of its
+// kind.
+func (t *Tx) CopyStatements(ctx context.Context, from, to Subject) error {
+	err := t.exec(ctx, `INSERT INTO statement SELECT subject, ?, attribute, stated_by, value, source FROM statement
+		WHERE subject = ? AND subject_id = ? AND stated_by IN ('header', 'metadata') ON CONFLICT DO NOTHING`, to.ID, from.Kind, from.ID)
+	if err != nil {
+		return fmt.Errorf("copy statements: %w", err)
+	}
+	return nil
+}
+
 // Unstate forgets what somebody stated of an attribute, and reports whether there was
 // anything.
 func (t *Tx) Unstate(ctx context.Context, of Subject, attribute, by string) (bool, error) {
@@ -144,6 +155,15 @@ func (t *Tx) EventsAlike(ctx context.Context, id int64) ([]EventKey, error) {
 			UNION SELECT primary_id FROM event WHERE id = ?1
 			UNION SELECT id FROM event WHERE primary_id = ?1
 			UNION SELECT o.id FROM event e JOIN event o ON o.primary_id = e.primary_id WHERE e.id = ?1)`, id)
+}
+
+// FindEvent returns the event of this code; ok is false where there is none.
+func (t *Tx) FindEvent(ctx context.Context, code string) (k EventKey, ok bool, err error) {
+	found, err := t.eventKeys(ctx, `code = ?`, code)
+	if err != nil || len(found) == 0 {
+		return k, false, err
+	}
+	return found[0], true, nil
 }
 
 func (t *Tx) eventKeys(ctx context.Context, where string, args ...any) ([]EventKey, error) {

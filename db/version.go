@@ -13,6 +13,7 @@ type Version struct {
 	Component             // of which Warnings and HeaderPeak are not read
 	Digest                string
 	Instrument            string
+	Siting                string // "unknown" where nobody says
 	// The event, by the one that stands for it, and the station's code; 0 and "" where
 	// unknown.
 	EventID     int64
@@ -22,7 +23,7 @@ type Version struct {
 
 // versionColumns are what is read of a version, from component c, record r, its
 // event e and station s, source file f and series x.
-const versionColumns = `c.id, c.record_id, r.code, r.instrument, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
+const versionColumns = `c.id, c.record_id, r.code, r.instrument, r.siting, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
 	coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
 	f.path, f.sha256, f.format, x.sha256, coalesce(c.motion_id, 0), coalesce(e.primary_id, e.id, 0), coalesce(s.code, '')
 	FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
@@ -66,7 +67,7 @@ func versions(ctx context.Context, q queryer, query string, args ...any) ([]Vers
 		start string
 	}
 	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Instrument, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
+		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Instrument, &v.Siting, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
 			&v.start, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz,
 			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.MotionID, &v.EventID, &v.StationCode}
 	})

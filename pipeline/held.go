@@ -47,6 +47,9 @@ func (w *writer) redescribe(ctx context.Context, tx *db.Tx, held db.HeldComponen
 	if err != nil {
 		return err
 	}
+	if err := w.settler.move(ctx, held.Record, record); err != nil {
+		return err
+	}
 	if err := w.settler.state(ctx, record, []account{catalogueAccount(stated)}); err != nil {
 		return err
 	}

@@ -57,7 +57,7 @@ func quakeOf(events []ingest.CatalogueEvent, c *ingest.Channel, samples int, sta
 	}
 	own := statedOf(c.Event)
 	nearest := math.Inf(1)
-	for _, e := range around(events, c.Event.Origin, originTolerance, originTolerance) {
+	for _, e := range around(events, c.Event.Origin, minuteTolerance, minuteTolerance) {
 		other := statedOf(e.Event)
 		if d, same := difference(&own, &other); same && d < nearest {
 			event, ok, nearest = e, true, d

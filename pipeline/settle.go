@@ -2,9 +2,11 @@ package pipeline
 
 import (
 	"context"
+	"fmt"
 	"slices"
 
 	"swaybook/db"
+	"swaybook/ingest"
 	"swaybook/pipeline/likeness"
 )
 
@@ -54,6 +56,52 @@ func (s *settler) stateOne(ctx context.Context, st db.Statement) error {
 	}
 	if isNew {
 		s.touched[st.Subject] = true
+	}
+	return nil
+}
+
+// distinguish gives a channel whose event has no code but its origin time another
+// one where that is held by an earthquake of another place or size: its time with a
+// number.
+func (s *settler) distinguish(ctx context.Context, c *ingest.Channel) error {
+	code := ingest.EventCode(c)
+	if c.Event.ID != "" || c.Event.Origin.IsZero() {
+		return nil
+	}
+	mine := statedOf(c.Event)
+	for n := 2; ; n++ {
+		held, ok, err := s.tx.FindEvent(ctx, code)
+		if err != nil || !ok {
+			return err
+		}
+		own, err := s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: held.ID})
+		if err != nil {
+			return err
+		}
+		if other := stated(held, own); !contradict(&mine, &other) {
+			return nil
+		}
+		code = fmt.Sprintf("%s-%d", ingest.EventCode(&ingest.Channel{Event: ingest.Event{Origin: c.Event.Origin}}), n)
+		c.Event.ID = code
+	}
+}
+
+// move takes what headers and metadata said of a held record's event and station
+// along to those that the catalogue gives it instead.
+func (s *settler) move(ctx context.Context, held *db.Record, to db.RecordKey) error {
+	for _, m := range []struct {
+		kind     string
+		from, to int64
+	}{{db.SubjectEvent, held.EventID, to.EventID}, {db.SubjectStation, held.StationID, to.StationID}} {
+		if m.from == m.to || m.from == 0 || m.to == 0 {
+			continue
+		}
+		subject := db.Subject{Kind: m.kind, ID: m.to}
+		if err := s.tx.CopyStatements(ctx, db.Subject{Kind: m.kind, ID: m.from}, subject); err != nil {
+			return err
+		}
+		s.touched[subject] = true
+		s.touched[db.Subject{Kind: m.kind, ID: m.from}] = true
 	}
 	return nil
 }
@@ -139,7 +187,7 @@ func (s *settler) neighbours(ctx context.Context, id int64) (events []statedEven
 	}
 	for i := 0; i < len(events); i++ { // add appends
 		if at := events[i].Origin; !at.IsZero() {
-			if err := add(s.tx.EventsWithin(ctx, at.Add(-originTolerance), at.Add(originTolerance))); err != nil {
+			if err := add(s.tx.EventsWithin(ctx, at.Add(-minuteTolerance), at.Add(minuteTolerance))); err != nil {
 				return nil, nil, err
 			}
 		}

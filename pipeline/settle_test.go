@@ -232,3 +232,58 @@ func TestALaterCatalogueReplacesTheEarlier(t *testing.T) {
 		}
 	}
 }
+
+// Two earthquakes of one second, whose headers have no code for them, are two.
+func TestEqualTimesOfTwoEarthquakes(t *testing.T) {
+	dir := t.TempDir()
+	knet := func(name, station, lat, lon, magnitude string, seed uint64) {
+		rng := rand.New(rand.NewPCG(seed, 1))
+		var b strings.Builder
+		for _, line := range [][2]string{
+			{"Origin Time", "2041/03/04 08:12:00"}, {"Lat.", lat}, {"Long.", lon}, {"Depth. (km)", "10"}, {"Mag.", magnitude},
+			{"Station Code", station}, {"Station Lat.", lat}, {"Station Long.", lon}, {"Station Height(m)", "10"},
+			{"Record Time", "2041/03/04 08:12:30"}, {"Sampling Freq(Hz)", "100Hz"}, {"Duration Time(s)", "1"}, {"Dir.", "N-S"},
+			{"Scale Factor", "2000(gal)/8388608"}, {"Max. Acc. (gal)", ""}, {"Last Correction", ""}, {"Memo.", ""},
+		} {
+			fmt.Fprintf(&b, "%-18s%s\n", line[0], line[1])
+		}
+		for range 100 {
+			fmt.Fprintln(&b, rng.IntN(20000)-10000)
+		}
+		put(t, dir, name, b.String())
+	}
+	knet("a.NS", "QVA001", "38.0", "142.0", "7.2", 1)
+	knet("b.NS", "QVA002", "33.0", "131.0", "4.0", 2)
+	knet("c.NS", "QVA003", "38.1", "142.0", "7.1", 3)
+	store := newStore(t)
+	run(t, store, options(dir))
+	var got []string
+	for _, c := range componentsOf(t, store) {
+		got = append(got, fmt.Sprint(c.Record.Code, " ", *c.Record.Event.Magnitude))
+	}
+	want := "[20410303T231200-2_QVA002 4 20410303T231200_QVA001 7.2 20410303T231200_QVA003 7.2]"
+	if fmt.Sprint(got) != want {
+		t.Errorf("got  %v\nwant %s", got, want)
+	}
+}
+
+// A catalogue that moves a held record to an event of its own takes along what its
+// header says of the earthquake.
+func TestACatalogueMovesARecordWithItsHeader(t *testing.T) {
+	files := invented()[:1]
+	store, _ := settled(t, files, 1)
+	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		s := newSettler(tx, map[db.Statement]string{})
+		held := componentsOf(t, store)[0]
+		c := ingest.Channel{Event: ingest.Event{ID: "NEW"}}
+		key, err := tx.PutRecord(t.Context(), recordOf(c, "R1"), true)
+		return errors.Join(err, s.move(t.Context(), held.Record, key), s.state(t.Context(), key, nil), s.settle(t.Context()))
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	r := componentsOf(t, store)[0].Record
+	if r.Event.OwnCode != "NEW" || show(r.Event.Magnitude) != "6.1" || show(r.Distances.EpicentralKM) != "84.1" {
+		t.Errorf("event %+v, distances %+v", r.Event, r.Distances)
+	}
+}

@@ -143,10 +143,12 @@ func areParallel(a, b *db.Version) bool {
 	return strings.EqualFold(a.Label, b.Label) || a.Digest == b.Digest
 }
 
-// areTwoSensors reports whether two components are of instruments that their
-// network tells apart: on one foundation their motions are much alike.
+// areTwoSensors reports whether two components are of instruments that stand on
+// different things or that their network tells apart: on one foundation, or down one
+// borehole, motions are much alike.
 func areTwoSensors(a, b *db.Version) bool {
-	return a.SourceSHA256 == b.SourceSHA256 ||
+	unknown := string(ingest.SitingUnknown)
+	return a.SourceSHA256 == b.SourceSHA256 || a.Siting != b.Siting && a.Siting != unknown && b.Siting != unknown ||
 		a.SourceFormat == b.SourceFormat && (differ(a.Instrument, b.Instrument) || differ(a.Channel, b.Channel))
 }
 

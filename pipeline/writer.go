@@ -134,6 +134,12 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 		}
 	}
 	for _, s := range res.channels {
+		if err := w.settler.distinguish(ctx, &s.channel); err != nil {
+			return report, err
+		}
+		if s.channel.Event.ID != "" {
+			s.stated.Event.ID = s.channel.Event.ID
+		}
 		p, err := place(ctx, tx, res, &s.channel)
 		if err != nil {
 			if report, err = w.reject(ctx, tx, res, report, s.channel.Line, err); err != nil {
