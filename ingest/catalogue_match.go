@@ -168,6 +168,10 @@ func (c *Catalogue) Apply(rel string, ch *Channel) (stated Channel, matched bool
 	return stated, len(rows) > 0
 }
 
+// GiveDirection gives the channel of the file at a slash-separated relative path the
+// direction of the catalogue's only row for it with a component, where it has none.
+func (c *Catalogue) GiveDirection(rel string, ch *Channel) { giveDirection(c.fileRows(rel), ch) }
+
 // giveDirection gives a channel without direction that of the only row with
 // component.
 func giveDirection(files []*catalogueRow, ch *Channel) {

@@ -141,9 +141,12 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	return res
 }
 
-// describe completes what the file's content says by the file's name, where it
-// gives no direction, and by the catalogue, which has the last word.
+// describe completes what the file's content says by the catalogue, which has the
+// last word, and by the file's name where neither gives a direction.
 func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (stated ingest.Channel, matched bool) {
+	if r.catalogue != nil {
+		r.catalogue.GiveDirection(file.Rel, c)
+	}
 	if c.Orientation.Axis == ingest.AxisUnknown {
 		_, c.Orientation = ingest.SplitStem(stem)
 	}
