@@ -126,17 +126,36 @@ func (m *Metadata) addEvents(events []fdsnxml.Event) {
 	if m.known == nil {
 		m.known = map[string]bool{}
 	}
+	var fresh []CatalogueEvent
 	for i := range events {
-		e := catalogueEvent(&events[i])
-		if m.known[e.PublicID] {
-			continue
+		if e := catalogueEvent(&events[i]); !m.known[e.PublicID] {
+			m.known[e.PublicID] = true
+			fresh = append(fresh, e)
 		}
-		m.known[e.PublicID] = true
-		at, _ := slices.BinarySearchFunc(m.events, e, func(a, b CatalogueEvent) int {
-			return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
-		})
-		m.events = slices.Insert(m.events, at, e)
 	}
+	slices.SortFunc(fresh, byOrigin)
+	m.events = merged(m.events, fresh)
+}
+
+func byOrigin(a, b CatalogueEvent) int {
+	return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
+}
+
+// merged puts more events among others, both in order, and returns all. It moves
+// no event that comes before the first of them.
+func merged(events, more []CatalogueEvent) []CatalogueEvent {
+	i, j := len(events), len(more)
+	events = append(events, more...)
+	for at := len(events) - 1; j > 0; at-- {
+		if i > 0 && byOrigin(events[i-1], more[j-1]) > 0 {
+			i--
+			events[at] = events[i]
+		} else {
+			j--
+			events[at] = more[j]
+		}
+	}
+	return events
 }
 
 // IsEmpty reports whether no document has been read.

@@ -3,6 +3,7 @@ package ingest
 import (
 	"bytes"
 	"errors"
+	"fmt"
 	"math"
 	"os"
 	"path/filepath"
@@ -10,6 +11,8 @@ import (
 	"strings"
 	"testing"
 	"time"
+
+	"swaybook/ingest/fdsnxml"
 )
 
 // mseedHints hold the metadata of the fixtures.
@@ -446,5 +449,25 @@ func TestMetadataRefusals(t *testing.T) {
 	_, _, err := Parse("f", []byte("<FDSNStationXML/>"), Hints{})
 	if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != "StationXML, not used: only files named *.xml are, alone or in archives named as such, and those of --metadata" {
 		t.Errorf("StationXML as a record: %v", err)
+	}
+}
+
+// Events come in the order of their times, however they are spread over documents,
+// and of two with one identifier the first stays.
+func TestEventsAreInOrder(t *testing.T) {
+	var m Metadata
+	for _, minutes := range [][]int{{5, 1}, {}, {3, 9, 1, 0}, {7}, {2, 4}} {
+		var events []fdsnxml.Event
+		for _, at := range minutes {
+			events = append(events, fdsnxml.Event{PublicID: fmt.Sprint("smi:invented/", at), Origin: mseedStart.Add(time.Duration(at) * time.Minute), Name: fmt.Sprint(len(m.events))})
+		}
+		m.addEvents(events)
+	}
+	var got []string
+	for _, e := range m.Events() {
+		got = append(got, e.ID+"/"+e.Name)
+	}
+	if want := "0/2 1/0 2/6 3/2 4/6 5/0 7/5 9/2"; strings.Join(got, " ") != want {
+		t.Errorf("events %v, want %s", got, want)
 	}
 }

@@ -3,6 +3,7 @@ package fdsnxml
 import (
 	"errors"
 	"fmt"
+	"hash/maphash"
 	"reflect"
 	"slices"
 	"strings"
@@ -21,7 +22,7 @@ const maxEpochs = 6
 func (v *Inventory) Lookup(network, station, location_, code string, from, to time.Time) (*Channel, error) {
 	var epochs, fit []*Channel
 	wanted := Channel{Network: network, Station: station, Location: location(location_), Code: code}
-	for _, i := range v.channels[wanted.name()] {
+	for _, i := range v.channels.byName[wanted.name()] {
 		c := &v.Channels[i]
 		epochs = append(epochs, c)
 		if covers(c.Start, c.End, from, to) {
@@ -48,7 +49,7 @@ func (v *Inventory) Lookup(network, station, location_, code string, from, to ti
 // time is zero. Where the epochs that fit are at different places, there is none.
 func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool) {
 	wanted := Station{Network: network, Code: code}
-	for _, i := range v.stations[wanted.name()] {
+	for _, i := range v.stations.byName[wanted.name()] {
 		other := v.Stations[i]
 		if !at.IsZero() && !covers(other.Start, other.End, at, at) {
 			continue
@@ -72,25 +73,54 @@ func (v *Inventory) Merge(other *Inventory) {
 }
 
 func (v *Inventory) addStation(s Station) {
-	if v.stations == nil {
-		v.stations = map[string][]int{}
-	}
-	v.Stations = add(v.Stations, s, s.name(), v.stations)
+	v.Stations = add(&v.stations, v.Stations, s, s.name(), maphash.Comparable(seed, s))
 }
 
 func (v *Inventory) addChannel(c Channel) {
-	if v.channels == nil {
-		v.channels = map[string][]int{}
-	}
-	v.Channels = add(v.Channels, c, c.name(), v.channels)
+	v.Channels = add(&v.channels, v.Channels, c, c.name(), c.hash())
 }
 
-// add appends an item that is not there yet and notes it under its name.
-func add[T any](all []T, item T, name string, held map[string][]int) []T {
-	if slices.ContainsFunc(held[name], func(i int) bool { return reflect.DeepEqual(all[i], item) }) {
+// seed is of this process alone, so that no document can be made whose items have
+// one hash.
+var seed = maphash.MakeSeed()
+
+// hash is that of all that is stated.
+func (c Channel) hash() uint64 {
+	key := struct {
+		rest         Channel
+		azimuth, dip float64
+		sensitivity  Sensitivity
+	}{rest: c}
+	key.rest.AzimuthDeg, key.rest.DipDeg, key.rest.Sensitivity = nil, nil, nil
+	if c.AzimuthDeg != nil {
+		key.azimuth = *c.AzimuthDeg
+	}
+	if c.DipDeg != nil {
+		key.dip = *c.DipDeg
+	}
+	if c.Sensitivity != nil {
+		key.sensitivity = *c.Sensitivity
+	}
+	return maphash.Comparable(seed, key)
+}
+
+// index finds the items of an inventory.
+type index struct {
+	byName map[string][]int
+	byHash map[uint64][]int
+}
+
+// add appends an item that is not there yet and notes it under its name. One name
+// may have any number of epochs, so equal ones are looked for by their hash.
+func add[T any](x *index, all []T, item T, name string, hash uint64) []T {
+	if slices.ContainsFunc(x.byHash[hash], func(i int) bool { return reflect.DeepEqual(all[i], item) }) {
 		return all
 	}
-	held[name] = append(held[name], len(all))
+	if x.byName == nil {
+		x.byName, x.byHash = map[string][]int{}, map[uint64][]int{}
+	}
+	x.byName[name] = append(x.byName[name], len(all))
+	x.byHash[hash] = append(x.byHash[hash], len(all))
 	return append(all, item)
 }
 

@@ -53,7 +53,7 @@ type Inventory struct {
 	Stations []Station
 	Channels []Channel
 
-	stations, channels map[string][]int // indices by name
+	stations, channels index
 }
 
 // The elements of StationXML that are read. The order of elements does not
