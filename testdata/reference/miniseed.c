@@ -1,8 +1,8 @@
 /* Writes miniseed.json: what libmseed 2 reads in miniSEED 2.4, and records that
  * it packs itself. Made with libmseed 2.19.8 of Debian 12 (libmseed-dev):
  *
- *     cc -O1 miniseed.c -lmseed -o /tmp/miniseed
- *     /tmp/miniseed ../records/miniseed/three-channels.mseed ../records/miniseed/floats.mseed \
+ *     cc -O1 miniseed.c -lmseed -o miniseed
+ *     ./miniseed ../records/miniseed/three-channels.mseed ../records/miniseed/floats.mseed \
  *         ../records/miniseed/velocity.mseed > miniseed.json
  *
  * "read" lists the records of the files as they come: name, byte at which they
