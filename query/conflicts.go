@@ -64,6 +64,10 @@ func (a *ConflictsAnswer) add(d db.Disputed) {
 	}
 }
 
+// scalesApart is how far magnitudes of one earthquake on two scales may lie apart:
+// the scales measure different things, but were made to meet.
+const scalesApart = 1.0
+
 // agree reports whether two values of an attribute state the same within what
 // networks round and round off.
 //
@@ -87,7 +91,10 @@ func agree(d db.Disputed, a, b string) bool {
 	case db.AttributeMagnitude:
 		m, kind, _ := strings.Cut(a, " ")
 		n, otherKind, _ := strings.Cut(b, " ")
-		return kind != otherKind && kind != "" && otherKind != "" || within(m, n, 0.05, 0)
+		if kind != otherKind && kind != "" && otherKind != "" {
+			return within(m, n, scalesApart, 0)
+		}
+		return within(m, n, 0.05, 0)
 	case db.AttributeDepth:
 		return within(a, b, 1, 0)
 	case db.AttributeElevation:

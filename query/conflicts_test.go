@@ -16,6 +16,10 @@ func TestAgree(t *testing.T) {
 		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "6.15 Mw", true},
 		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "6.2 Mw", false},
 		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "6.4 ML", true}, // another quantity
+		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "5.1 ML", true},
+		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "7.1 ML", true},
+		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "7.2 ML", false},
+		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "3.9 ML", false},
 		{db.SubjectEvent, db.AttributeMagnitude, "6.1 Mw", "6.2", false},
 		{db.SubjectEvent, db.AttributeOriginTime, "2024-02-03T04:05:06Z", "2024-02-03T04:05:07Z", true},
 		{db.SubjectEvent, db.AttributeOriginTime, "2024-02-03T04:05:06Z", "2024-02-03T04:05:07.5Z", false},
