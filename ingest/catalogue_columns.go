@@ -50,7 +50,7 @@ var catalogueColumns = columnsByName(
 	numberColumn("station_longitude", scopeStation, limits{-180, 360}, func(r *catalogueRow) *Number { return &r.channel.Station.Longitude }),
 	numberColumn("elevation_m", scopeStation, limits{-500, 9000}, func(r *catalogueRow) *Number { return &r.channel.Station.ElevationM }),
 	numberColumn("vs30_m_s", scopeStation, vs30Limits, func(r *catalogueRow) *Number { return &r.channel.Station.Vs30 }),
-	textColumn("site_class", scopeStation, func(r *catalogueRow) *string { return &r.channel.Station.SiteClass }),
+	catalogueColumn{"site_class", scopeStation, setSiteClass},
 	numberColumn("azimuth_deg", scopeStation, limits{0, 360}, func(r *catalogueRow) *Number { return &r.channel.Orientation.AzimuthDeg }),
 	textColumn("instrument", scopeStation, func(r *catalogueRow) *string { return &r.channel.Instrument }),
 	catalogueColumn{"siting", scopeStation, setSiting},
@@ -120,6 +120,15 @@ func setSiting(row *catalogueRow, text string) error {
 		return fmt.Errorf("expected free-field, ground, structure, borehole or unknown, found %s", found(text))
 	}
 	row.channel.Siting = siting
+	return nil
+}
+
+func setSiteClass(row *catalogueRow, text string) error {
+	ground, ok := parseGroundType(text)
+	if !ok {
+		return fmt.Errorf("expected a ground type of EN 1998-1, A to E, S1 or S2, found %s", found(text))
+	}
+	row.channel.Station.SiteClass = ground
 	return nil
 }
 

@@ -118,6 +118,8 @@ func TestCatalogueErrors(t *testing.T) {
 		"file,station_longitude\ne,30\n":       "c.csv:2: station_latitude and station_longitude need each other",
 		"file,low_cut_hz,high_cut_hz\na,40,.1": "c.csv:2: low_cut_hz 40 is not below high_cut_hz 0.1",
 		"file,unit\na,counts\n":                "c.csv:2: unit: raw counts need a scale; convert them to a unit of acceleration first",
+		"station,site_class\ns,soft rock\n":    `c.csv:2: site_class: expected a ground type of EN 1998-1, A to E, S1 or S2, found "soft rock"`,
+		"station,site_class\ns,F\n":            `c.csv:2: site_class: expected a ground type of EN 1998-1, A to E, S1 or S2, found "F"`,
 		"file\n\x00\x01\n":                     "c.csv: file is binary, not a text record",
 	}
 	for text, want := range cases {
@@ -143,7 +145,7 @@ func TestCatalogueColumns(t *testing.T) {
 	var header, row []string
 	for name := range catalogueColumns {
 		cell := map[string]string{"origin_time": "2041-03-04", "siting": "ground", "unit": "g", "file": "a.txt", "component": "NS",
-			"dt_s": "0.01", "low_cut_hz": "0.2"}[name]
+			"dt_s": "0.01", "site_class": "S1*", "low_cut_hz": "0.2"}[name]
 		if cell == "" {
 			cell = "7"
 		}
@@ -155,7 +157,7 @@ func TestCatalogueColumns(t *testing.T) {
 	full := Channel{
 		Event: Event{ID: "7", Name: "7", Date: time.Date(2041, 3, 4, 0, 0, 0, 0, time.UTC), Latitude: seven, Longitude: seven, DepthKM: seven,
 			Magnitude: seven, MagnitudeType: "7"},
-		Station:    Station{Network: "7", Code: "7", Name: "7", Latitude: seven, Longitude: seven, ElevationM: seven, Vs30: seven, SiteClass: "7"},
+		Station:    Station{Network: "7", Code: "7", Name: "7", Latitude: seven, Longitude: seven, ElevationM: seven, Vs30: seven, SiteClass: "S1"},
 		Instrument: "7", Siting: SitingGround, Orientation: Orientation{Axis: AxisHorizontal, AzimuthDeg: seven, Label: "NS"},
 		DistanceKM: seven,
 		Distances:  Distances{EpicentralKM: seven, HypocentralKM: seven, RuptureKM: seven, JoynerBooreKM: seven},

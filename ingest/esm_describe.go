@@ -1,7 +1,6 @@
 package ingest
 
 import (
-	"regexp"
 	"strings"
 	"time"
 )
@@ -44,10 +43,6 @@ func (h *esmHeader) event(c *Channel) {
 	}
 }
 
-// esmClass is a ground type of EN 1998-1, with the mark of one that was
-// inferred and not measured.
-var esmClass = regexp.MustCompile(`^([A-E]|S[12])(?:\s*\*|\s*\(.*\))?$`)
-
 func (h *esmHeader) station(c *Channel) {
 	s := &c.Station
 	s.Network, s.Code, s.Name = h.text(esmNetwork), h.text(esmStation), h.text(esmStationName)
@@ -55,8 +50,8 @@ func (h *esmHeader) station(c *Channel) {
 	s.ElevationM = h.number(c, esmElevation)
 	s.Vs30 = h.positive(c, esmVs30)
 	class := h.at(esmSiteClass)
-	if m := esmClass.FindStringSubmatch(class.text); m != nil {
-		s.SiteClass = m[1]
+	if ground, ok := parseGroundType(class.text); ok {
+		s.SiteClass = ground
 	} else if class.text != "" && class.text != "U" {
 		c.warn("line %d: %s %s not understood", class.line, esmSiteClass, found(class.text))
 	}

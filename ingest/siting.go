@@ -76,3 +76,16 @@ func SitingFromWords(s string) Siting {
 	}
 	return SitingUnknown
 }
+
+// groundType is a ground type of EN 1998-1, with the mark of one that was inferred
+// and not measured.
+var groundType = regexp.MustCompile(`^([A-E]|S[12])(?:\s*\*|\s*\(.*\))?$`)
+
+// parseGroundType returns the ground type that a text states, without its mark.
+func parseGroundType(text string) (ground string, ok bool) {
+	m := groundType.FindStringSubmatch(text)
+	if m == nil {
+		return "", false
+	}
+	return m[1], true
+}

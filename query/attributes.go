@@ -154,18 +154,23 @@ func describeRecord(a *attributes, r *db.Record) {
 }
 
 // siteClasses are the ground type after EN 1998-1 and the site class after NEHRP
-// by Vs30, "" where it is unknown; a ground type that somebody states stands where
-// Vs30 does not say.
+// by Vs30, "" where it is unknown. A ground type that somebody states stands where
+// Vs30 is unknown, and over that of Vs30 where it is one that Vs30 cannot tell: E,
+// S1 or S2.
 func siteClasses(s *db.Station) (en1998, nehrp string) {
+	en1998 = s.SiteClass
 	if s.Vs30MPS == nil {
-		return s.SiteClass, ""
+		return en1998, ""
 	}
-	ground, err := siteclass.EN1998(*s.Vs30MPS)
 	site, errSite := siteclass.NEHRP(*s.Vs30MPS)
+	ground, err := siteclass.EN1998(*s.Vs30MPS)
 	if err != nil || errSite != nil {
-		return s.SiteClass, ""
+		return en1998, ""
 	}
-	return string(ground), string(site)
+	if !siteclass.NeedsMoreThanVs30(siteclass.Class(en1998)) {
+		en1998 = string(ground)
+	}
+	return en1998, string(site)
 }
 
 // year is that of the origin, UTC, or of the record's start where the origin is

@@ -41,6 +41,10 @@ func EN1998(vs30 float64) (Class, error) {
 	return classify(vs30, []limit{{800, false, "A"}, {360, false, "B"}, {180, true, "C"}, {0, false, "D"}})
 }
 
+// NeedsMoreThanVs30 reports whether a class is a ground type E, S1 or S2 of EN
+// 1998-1:2004, table 3.1: what it says of layers holds whatever Vs30 is.
+func NeedsMoreThanVs30(ground Class) bool { return ground == "E" || ground == "S1" || ground == "S2" }
+
 // NEHRP returns the site class A, B, C, D or E of ASCE/SEI 7-10, table 20.3-1, by
 // Vs30 in m/s, with the metric limits of the NEHRP provisions:
 //

@@ -58,3 +58,12 @@ func TestNoVelocity(t *testing.T) {
 		}
 	}
 }
+
+// E, S1 and S2 are those that the package never gives.
+func TestNeedsMoreThanVs30(t *testing.T) {
+	for class, want := range map[Class]bool{"A": false, "B": false, "C": false, "D": false, "E": true, "S1": true, "S2": true, "": false} {
+		if got := NeedsMoreThanVs30(class); got != want {
+			t.Errorf("NeedsMoreThanVs30(%q) = %v", class, got)
+		}
+	}
+}
