@@ -82,7 +82,8 @@ func Formats(layouts Layouts) []Info {
 // Hints are what the user states about a file that the file may not state
 // itself. The zero value states nothing.
 type Hints struct {
-	// Unit is the unit of the samples, in any spelling that ParseUnit knows.
+	// Unit is the unit of the samples, in any spelling that ParseUnit knows. Counts
+	// are one for miniSEED alone, whose metadata give the scale.
 	Unit string
 	// UnitFrom says where Unit was stated ("--unit", "catalogue line 7"), for
 	// messages.

@@ -12,7 +12,7 @@ import (
 
 // miniSEED reads miniSEED 2.4 and 3: records of counts, whose sensitivities come
 // from StationXML in the hints, or of floating-point numbers in a unit that the
-// hints state. Counts are divided by the sensitivity; the response of the
+// hints state, counts among them. Counts are divided by the sensitivity; the response of the
 // instrument is not removed, which is adequate where it is flat. A channel with
 // gaps is refused.
 //
@@ -25,7 +25,7 @@ type miniSEED struct{}
 func (miniSEED) Info() Info {
 	return Info{
 		Name: "miniseed", Title: "miniSEED 2.4 and 3 (FDSN) with StationXML", Channels: "one or more",
-		Unit:    "counts with the sensitivity of a StationXML file; floats without one as --unit says",
+		Unit:    "counts with the sensitivity of a StationXML file; floats as --unit says, which may be counts",
 		NotRead: "full SEED volumes, channels with gaps, records without blockette 1000, encodings other than integers, floats, Steim-1 and Steim-2",
 	}
 }

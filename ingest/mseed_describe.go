@@ -20,10 +20,13 @@ func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
 	last := t.At(len(t.Samples) - 1)
 	epoch, lookup := hints.Metadata.epoch(c.id.Network, c.id.Station, c.id.Location, c.id.Channel, t.Start, last)
 	var err error
-	switch isFloat, stated := t.Encoding.IsFloat(), hints.Unit != ""; {
-	case isFloat && stated && (lookup != nil || !hints.UnitForAll):
-		err = c.statedUnit(hints)
-	case !isFloat && stated && !hints.UnitForAll:
+	isFloat, stated, asCounts := t.Encoding.IsFloat(), hints.Unit != "", IsCounts(hints.Unit)
+	switch {
+	case isFloat && !stated:
+		return refuse(0, c.id.String(), "floating-point samples may be counts or an acceleration: say which with --unit")
+	case isFloat && !asCounts:
+		err = c.statedUnit(hints, epoch)
+	case stated && !asCounts && !hints.UnitForAll:
 		return refuse(0, c.id.String(), "the samples are counts, %s says %s", orElse(hints.UnitFrom, "the hint"), hints.Unit)
 	case lookup != nil:
 		return c.noEpoch(t, lookup)
@@ -40,23 +43,24 @@ func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
 	return nil
 }
 
-// noEpoch says what is missing to read the samples.
+// noEpoch says what is missing to read counts.
 func (c *mseedChannel) noEpoch(t *miniseed.Trace, lookup error) error {
 	known := ""
 	if !errors.Is(lookup, fdsnxml.ErrUnknown) {
 		known = "; " + lookup.Error()
 	}
-	if t.Encoding.IsFloat() {
-		return refuse(0, "", "floating-point samples of %s at %s need a unit (--unit), or a StationXML file that covers them (--metadata)%s",
-			c.id, instantText(t.Start), known)
-	}
 	return refuse(0, "", "counts need the sensitivity of %s at %s: name a StationXML file that covers it (--metadata)%s", c.id, instantText(t.Start), known)
 }
 
-// statedUnit takes the unit of the hints.
-func (c *mseedChannel) statedUnit(hints Hints) error {
+// statedUnit takes the unit of the hints, whatever sensitivity the epoch, nil for
+// none, has: the samples may have been divided by it.
+func (c *mseedChannel) statedUnit(hints Hints, e *fdsnxml.Channel) error {
 	unit, _, err := chooseUnit(statement{}, hints)
 	c.Unit, c.UnitMPS2, c.Processing = unit.Name, unit.MPS2, ProcessingUnknown
+	if err == nil && e != nil {
+		c.warn("floating-point samples taken as %s, which %s says; the station metadata cover the channel too, and their sensitivity is not used",
+			unit.Name, orElse(hints.UnitFrom, "the hint"))
+	}
 	return err
 }
 

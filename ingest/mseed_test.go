@@ -3,6 +3,7 @@ package ingest
 import (
 	"bytes"
 	"errors"
+	"fmt"
 	"math"
 	"os"
 	"path/filepath"
@@ -10,6 +11,8 @@ import (
 	"strings"
 	"testing"
 	"time"
+
+	"swaybook/ingest/miniseed/miniseedtest"
 )
 
 // mseedHints hold the metadata of the fixtures.
@@ -169,18 +172,33 @@ func TestMiniSEEDUnits(t *testing.T) {
 	if !equalSeries(c.Acceleration, x) || c.Unit != "g" || c.Processing != ProcessingUnknown || c.Orientation.AzimuthDeg != Known(90) {
 		t.Errorf("unit %q, %s, %+v, samples %g … %g", c.Unit, c.Processing, c.Orientation, c.Acceleration[1], x[1])
 	}
-	// Floats of a channel with metadata are counts; only a unit for this very file
-	// says otherwise.
-	counts := mseedRecord("HNE", 5.5, 900)
-	counts.Encoding = encodedFloat32
+	// What is stated holds for channels with metadata, which place them.
+	floats := mseedRecord("HNE", 5.5, 900)
+	floats.Encoding = encodedFloat32
 	hints := mseedHints(t)
-	hints.Unit, hints.UnitFrom, hints.UnitForAll = "mm/s2", "--unit", true
-	if c := parseMiniSEED(t, counts.Series(2), hints)[0]; c.Unit != "counts" {
-		t.Errorf("unit %q, want counts", c.Unit)
+	const warning = "floating-point samples taken as mm/s2, which %s says; the station metadata cover the channel too, and their sensitivity is not used"
+	for from, forAll := range map[string]bool{"--unit": true, "catalogue line 7": false} {
+		hints.Unit, hints.UnitFrom, hints.UnitForAll = "mm/s2", from, forAll
+		c := parseMiniSEED(t, floats.Series(2), hints)[0]
+		if c.Unit != "mm/s2" || c.Station.Name != "Tarn Head" || c.Acceleration[7] != float64(float32(floats.Samples[7]))*0.001 {
+			t.Errorf("%s: unit %q at %q, value %g", from, c.Unit, c.Station.Name, c.Acceleration[7])
+		}
+		if want := []string{fmt.Sprintf(warning, from)}; !reflect.DeepEqual(c.Warnings, want) {
+			t.Errorf("%s: warnings %q, want %q", from, c.Warnings, want)
+		}
 	}
-	hints.UnitFrom, hints.UnitForAll = "catalogue line 7", false
-	if c := parseMiniSEED(t, counts.Series(2), hints)[0]; c.Unit != "mm/s2" || c.Station.Name != "Tarn Head" {
-		t.Errorf("unit %q at %q, want mm/s2", c.Unit, c.Station.Name)
+	// Counts are divided by the sensitivity, whether floats or not.
+	hints.Unit, hints.UnitFrom, hints.UnitForAll = "Counts", "--unit", true
+	integers := mseedRecord("HNE", 5.5, 900)
+	for _, r := range []*miniseedtest.Record{&floats, &integers} {
+		c := parseMiniSEED(t, r.Series(2), hints)[0]
+		want := make([]float64, len(r.Samples))
+		for i, v := range r.Samples {
+			want[i] = float64(float32(v))
+		}
+		if c.Unit != "counts" || c.UnitMPS2 != 1.0/200000 || len(c.Warnings) > 0 || !equalSeries(c.Acceleration, aboutMean(want, 1.0/200000)) {
+			t.Errorf("as counts: unit %q of %g, warnings %q", c.Unit, c.UnitMPS2, c.Warnings)
+		}
 	}
 }
 
@@ -274,7 +292,11 @@ func TestMiniSEEDRefusals(t *testing.T) {
 	unit.Unit, unit.UnitFrom = "g", "catalogue line 7"
 	step := full
 	step.StepS, step.StepFrom = 0.005, "catalogue line 7"
-	floats := Hints{Metadata: full.Metadata}
+	floats, counts := Hints{Metadata: full.Metadata}, full
+	counts.Unit, counts.UnitForAll = "counts", true
+	covered := east
+	covered.Encoding = encodedFloat32
+	const say = "floating-point samples may be counts or an acceleration: say which with --unit"
 	const needs = "f.mseed: counts need the sensitivity of XX.TARN.00.HNE at 2041-03-04T08:12:09.5Z: name a StationXML file that covers it (--metadata)"
 	cases := []struct {
 		name  string
@@ -295,7 +317,9 @@ func TestMiniSEEDRefusals(t *testing.T) {
 		{"no such channel", files["damaged-unknown-station.mseed"], full, strings.Replace(needs, "TARN", "MERE", 1)},
 		{"no epoch", east.Series(2), stationHints(t, "2040-01-01T00:00:00Z\"", "2041-04-01T00:00:00Z\"", "2040-01-01T00:00:00Z\"", "2041-04-01T00:00:00Z\""),
 			needs + "; no epoch covers 2041-03-04T08:12:09Z: from 2041-04-01T00:00:00Z on"},
-		{"floats", files["floats.mseed"], floats, "f.mseed: floating-point samples of XX.FELL.00.HNE at 2041-03-04T08:12:09.5Z need a unit (--unit), or a StationXML file that covers them (--metadata)"},
+		{"floats", files["floats.mseed"], floats, "f.mseed: XX.FELL.00.HNE: " + say},
+		{"floats with metadata", covered.Series(2), full, "f.mseed: XX.TARN.00.HNE: " + say},
+		{"floats as counts", files["floats.mseed"], counts, strings.Replace(needs, "TARN", "FELL", 1)},
 		{"unit of counts", east.Series(2), unit, "f.mseed: XX.TARN.00.HNE: the samples are counts, catalogue line 7 says g"},
 		{"step", east.Series(2), step, "f.mseed: dt: the file says 0.01 s, catalogue line 7 says 0.005 s"},
 		{"no sensitivity", east.Series(2), stationHints(t, "InstrumentSensitivity>", "InstrumentNothing>", "</InstrumentSensitivity>", "</InstrumentNothing>"), "f.mseed: XX.TARN.00.HNE: the station metadata give no sensitivity"},

@@ -94,6 +94,12 @@ func ParseUnit(s string) (Unit, error) {
 	return Unit{}, fmt.Errorf("unknown unit %s; known are %s", found(s), unitNames())
 }
 
+// IsCounts reports whether a unit says that numbers are digitiser counts.
+func IsCounts(unit string) bool {
+	_, err := ParseUnit(unit)
+	return errors.Is(err, errCounts)
+}
+
 // cutUnit returns the length that text names before one of the ends.
 func cutUnit(text string, ends []string) (string, bool) {
 	for _, end := range ends {
@@ -140,7 +146,7 @@ func chooseUnit(stated statement, hints Hints) (unit Unit, warning string, err e
 		return Unit{}, "", refuse(0, "unit", "the file states no unit: give it with --unit or in the catalogue's unit column")
 	}
 	var hint Unit
-	if hints.Unit != "" {
+	if hints.Unit != "" && (stated.text == "" || !hints.UnitForAll) {
 		if hint, err = ParseUnit(hints.Unit); err != nil {
 			return Unit{}, "", refuse(0, "unit", "from %s: %w", orElse(hints.UnitFrom, "hint"), err)
 		}

@@ -76,3 +76,21 @@ func TestChooseUnit(t *testing.T) {
 		}
 	}
 }
+
+// Counts for all files serve miniSEED: files that state a unit keep it, silent ones
+// of other formats are refused.
+func TestCountsForAll(t *testing.T) {
+	hints := Hints{Unit: "counts", UnitFrom: "--unit", UnitForAll: true}
+	if unit, _, err := chooseUnit(statement{"gal", 7}, hints); err != nil || unit.Name != "gal" {
+		t.Errorf("beside a stated unit: %q, %v", unit.Name, err)
+	}
+	const want = ": unit: from --unit: raw counts need a scale; convert them to a unit of acceleration first"
+	if _, _, err := chooseUnit(statement{}, hints); err == nil || err.Error() != want {
+		t.Errorf("of a silent file: %v, want %q", err, want)
+	}
+	for text, want := range map[string]bool{"counts": true, " Count": true, "cts": true, "": false, "g": false, "countess": false} {
+		if got := IsCounts(text); got != want {
+			t.Errorf("IsCounts(%q) = %v", text, got)
+		}
+	}
+}

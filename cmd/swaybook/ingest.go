@@ -32,7 +32,7 @@ func ingestCommand() *cli.Command {
 			&cli.StringFlag{Name: "catalogue", Usage: "CSV `FILE` that joins or overrides metadata"},
 			&cli.StringSliceFlag{Name: "metadata", Usage: "StationXML or QuakeML `FILE`, or a folder of *.xml; may be given again"},
 			layoutFlag(),
-			&cli.StringFlag{Name: "unit", Usage: "`UNIT` of samples in files that state none: g, mg, gal, m/s2, cm/s2, mm/s2, in/s2, ft/s2"},
+			&cli.StringFlag{Name: "unit", Usage: "`UNIT` of samples in files that state none: g, mg, gal, m/s2, cm/s2, mm/s2, in/s2, ft/s2; counts for floats of miniSEED"},
 			&cli.Float64Flag{Name: "dt", DefaultText: "none", Usage: "time step in `S` of files that state none"},
 			&cli.StringFlag{Name: "periods", Usage: "periods of a new store's grid in s: a `LIST` such as 0.1,0.2,1 or @FILE"},
 			&cli.StringFlag{Name: "dampings", Usage: "damping ratios of a new store's grid, a `LIST` such as 2%,5%,0.1"},
@@ -116,7 +116,9 @@ func ingestHints(c *cli.Context) (ingest.Hints, error) {
 		Unit: c.String("unit"), UnitFrom: "--unit", UnitForAll: true,
 		StepS: c.Float64("dt"), StepFrom: "--dt", StepForAll: true,
 	}
-	if h.Unit != "" {
+	// Counts are a unit for miniSEED, whose metadata give the scale; readers of other
+	// formats refuse them where a file states no unit.
+	if h.Unit != "" && !ingest.IsCounts(h.Unit) {
 		if _, err := ingest.ParseUnit(h.Unit); err != nil {
 			return h, usagef("--unit: %w", err)
 		}
