@@ -292,20 +292,33 @@ func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, 
 	}
 }
 
+// sweepGeneric passes over rows within a circle that all distances have reached.
 func sweepGeneric(s *Sweep, c *SweepCompass, x, y *Row, n, every int) {
 	last := (n - 1) * every
 	xs, ys := unsafe.Slice(x, last+1), unsafe.Slice(y, last+1)
-	for k := range s {
-		cos, sin, tops := c[k].Cos[0], c[k].Sin[0], &s[k]
+	for l := range Lanes {
+		inner := s[0][l]
+		for k := range s {
+			inner = min(inner, s[k][l])
+		}
+		inner = min(float64(inner*inner)*withinRounding, math.MaxFloat64)
 		for i := 0; i <= last; i += every {
-			for l := range tops {
-				if d := math.Abs(math.FMA(cos, xs[i][l], float64(sin*ys[i][l]))); d > tops[l] {
-					tops[l] = d
+			u, v := xs[i][l], ys[i][l]
+			if !(math.FMA(u, u, math.FMA(v, v, aboveZero)) > inner) {
+				continue
+			}
+			for k := range s {
+				if d := math.Abs(math.FMA(c[k].Cos[0], u, float64(c[k].Sin[0]*v))); d > s[k][l] {
+					s[k][l] = d
 				}
 			}
 		}
 	}
 }
+
+// withinRounding makes the square of a distance so much less that rounding cannot
+// take what exceeds the distance in some direction for less.
+const withinRounding = 1 - 0x1p-40
 
 func displaceGeneric(rows *Row, q *Displaced, states *Mark, a *float64, n int) {
 	out, list, ground := unsafe.Slice(rows, n), unsafe.Slice(states, n), unsafe.Slice(a, n+1)

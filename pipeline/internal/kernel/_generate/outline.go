@@ -2,6 +2,7 @@ package main
 
 import (
 	"fmt"
+	"math"
 
 	. "github.com/mmcloughlin/avo/build"
 	"github.com/mmcloughlin/avo/operand"
@@ -380,20 +381,20 @@ func (l level) sweep() {
 	s, c := Load(Param("s"), GP64()), Load(Param("c"), GP64())
 	x, y := Load(Param("x"), GP64()), Load(Param("y"), GP64())
 	n, step := Load(Param("n"), GP64()), rowsOf(Load(Param("every"), GP64()))
-	mask, count := l.absolute(), sweepCount
+	mask, tiny, count := l.absolute(), l.constant(0x1p-1022), sweepCount
 	if !l.keep {
 		count = 6
 	}
 	for v := range lanes / l.width {
 		for k := 0; k < sweepCount; k += count {
-			l.sweepVector(s, c, x, y, n, step, v, k, count, mask)
+			l.sweepVector(s, c, x, y, n, step, v, k, count, mask, tiny)
 		}
 	}
 	VZEROUPPER()
 	RET()
 }
 
-func (l level) sweepVector(s, c, x, y, n, step reg.Register, v, from, count int, mask reg.VecVirtual) {
+func (l level) sweepVector(s, c, x, y, n, step reg.Register, v, from, count int, mask, tiny reg.VecVirtual) {
 	xs, ys, left := GP64(), GP64(), GP64()
 	MOVQ(x, xs)
 	MOVQ(y, ys)
@@ -403,11 +404,18 @@ func (l level) sweepVector(s, c, x, y, n, step reg.Register, v, from, count int,
 		tops[k] = l.vector()
 		VMOVUPD(l.at(s, from+k, 0, v), tops[k])
 	}
-	loop := fmt.Sprintf("row%d_%d", v, from)
+	inner := l.innerSquare(tops)
+	loop, within := fmt.Sprintf("row%d_%d", v, from), fmt.Sprintf("inner%d_%d", v, from)
 	Label(loop)
-	u, w := l.vector(), l.vector()
+	u, w, square, bits := l.vector(), l.vector(), l.vector(), GP32()
 	VMOVUPD(l.at(xs, 0, 0, v), u)
 	VMOVUPD(l.at(ys, 0, 0, v), w)
+	VMOVAPD(tiny, square)
+	VFMADD231PD(w, w, square)
+	VFMADD231PD(u, u, square)
+	l.compare(square, inner, bits)
+	TESTL(bits, bits)
+	JZ(operand.LabelRef(within))
 	for k := range tops {
 		t := l.vector()
 		VMULPD(operand.Mem{Base: c, Disp: (from+k)*128 + 64}, w, t)
@@ -415,6 +423,7 @@ func (l level) sweepVector(s, c, x, y, n, step reg.Register, v, from, count int,
 		l.and(mask, t, t)
 		VMAXPD(tops[k], t, tops[k])
 	}
+	Label(within)
 	ADDQ(step, xs)
 	ADDQ(step, ys)
 	DECQ(left)
@@ -422,6 +431,20 @@ func (l level) sweepVector(s, c, x, y, n, step reg.Register, v, from, count int,
 	for k := range tops {
 		VMOVUPD(tops[k], l.at(s, from+k, 0, v))
 	}
+}
+
+// innerSquare returns the square of the least of distances, less rounding: no row
+// up to it can raise any of them, so that what is passed over changes no bit.
+func (l level) innerSquare(tops []reg.VecVirtual) reg.VecVirtual {
+	inner := l.vector()
+	VMOVAPD(tops[0], inner)
+	for _, top := range tops[1:] {
+		VMINPD(top, inner, inner)
+	}
+	VMULPD(inner, inner, inner)
+	VMULPD(l.constant(1-0x1p-40), inner, inner)
+	VMINPD(l.constant(math.MaxFloat64), inner, inner)
+	return inner
 }
 
 // displace takes all lanes of a row at a time.
