@@ -156,7 +156,7 @@ func (p *polygon) enclose() {
 // that the whole is drawn in by it, at least; widestSide is the greatest angle
 // between two sides in degrees.
 const (
-	leastSlack = 0.006
+	leastSlack = 0.01
 	widestSide = 45
 )
 

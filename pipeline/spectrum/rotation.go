@@ -25,7 +25,7 @@ type rotation struct {
 	strideNorms           [len(strides)][]kernel.Line
 	peak                  float64            // the greatest length of the ground acceleration
 	fence                 *kernel.Fence      // slow: those of the lanes, in units of the march
-	orbits                *kernel.OrbitFence // fast: what free vibrations do not leave it
+	orbits                *kernel.OrbitFence // what free vibrations do not leave it
 	lane                  [lanes]rotatedLane
 	points                []kernel.Point
 	order                 []int                // blocks
@@ -35,6 +35,8 @@ type rotation struct {
 	directions            directions
 	sweep                 *kernel.Sweep
 	displaced             *kernel.Displaced // fast
+	vibration             *kernel.Vibration // slow
+	cut, loose            uint32            // slow: lanes whose steps are cut, and those judged by free vibrations
 }
 
 // span is the bound on |u| over some time,
@@ -102,6 +104,7 @@ func newRotation() *rotation {
 		pair:  [2]*motion{newMotion(), newMotion()},
 		fence: new(kernel.Fence), orbits: new(kernel.OrbitFence),
 		directions: newDirections(), sweep: new(kernel.Sweep), displaced: new(kernel.Displaced),
+		vibration: new(kernel.Vibration),
 	}
 }
 
@@ -387,11 +390,46 @@ func (lane *rotatedLane) within(s *span, a float64) float64 {
 // vibration can matter, if it dies away.
 const fewCuts = 4
 
-// gatherStep collects the parts of a step that are not within the fence, if its
-// free vibration about its straight-line solution (type fast) can matter. a is the
-// greatest length of the ground acceleration in the step.
+// isLoose reports whether free vibrations of the lane are judged.
+func (lane *rotatedLane) isLoose() bool {
+	return lane.cuts > fewCuts || lane.cuts > 1 && lane.one.damping < freeDamping
+}
+
+// setOrbits sets the region of steps, in units of unit, that stay within the fence of
+// a lane with their free vibration and the straight-line solution about which it is:
+// that is level·a + change·(a' − a) under ground acceleration a.
+func (r *rotation) setOrbits(l int, unit, level, change float64) {
+	lane, o := &r.lane[l], r.orbits
+	for k := range lane.fence {
+		x, y := lane.fence[k].normal()
+		x, y = x/unit, y/unit
+		s := &o.Sides[k]
+		s.XX[l], s.XY[l], s.YY[l] = float64(x*x), float64(2*float64(x*y)), float64(y*y)
+		s.X[l], s.Y[l] = x, y
+	}
+	least := float64(lane.least * unit)
+	o.First[l], o.Second[l] = math.Abs(level)/least, math.Abs(change)/least
+	o.Inner[l] = 1 / float64(least*least)
+	o.Level[l], o.Slope[l], o.Rise[l] = float64(0.5*level), change, float64(0.5*o.First[l])
+}
+
+// screenOrbits clears the flags of lanes of the steps of a block, from a sample on,
+// that are within the region of setOrbits.
+func (r *rotation) screenOrbits(from int, flags []uint32) {
+	x, y, n := r.pair[0], r.pair[1], len(flags)
+	orbits := kernel.Orbits{
+		X: x.states[:n], Y: y.states[:n], GroundX: x.a[from : from+n+1], GroundY: y.a[from : from+n+1],
+		Lines: r.stepNorms[from : from+n],
+	}
+	kernel.ScreenOrbits(r.orbits, &orbits, flags)
+}
+
+// gatherStep collects the parts of a step that are not within the fence. With little
+// damping the free vibration about its straight-line solution (type fast), of which
+// many are just within the limits, is held against those first. a is the greatest
+// length of the ground acceleration in the step.
 func (lane *rotatedLane) gatherStep(sample int, x, y groundedStep, a float64) {
-	if lane.cuts > fewCuts || lane.one.damping < freeDamping {
+	if lane.one.damping < freeDamping {
 		w := &lane.whole
 		xLine, xRise := w.line(x.a, x.next)
 		yLine, yRise := w.line(y.a, y.next)

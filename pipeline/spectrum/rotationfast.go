@@ -60,11 +60,14 @@ func (g *fastGroup) gather(r *rotation, b int, flags uint32) {
 	}
 	from, to := g.trace(r, b, flags)
 	n := to - from
-	x, y, stepFlags := r.pair[0].states[:n], r.pair[1].states[:n], r.pair[0].stepFlags[:n]
+	stepFlags := r.pair[0].stepFlags[:n]
 	g.setFence(r, flags)
-	kernel.ScreenOrbits(r.orbits, x, y, r.stepNorms[from:to], stepFlags, flags)
 	for k := range stepFlags {
-		for left := stepFlags[k] & flags; left != 0; left &= left - 1 {
+		stepFlags[k] = flags
+	}
+	r.screenOrbits(from, stepFlags)
+	for k := range stepFlags {
+		for left := stepFlags[k]; left != 0; left &= left - 1 {
 			g.gatherStep(r, bits.TrailingZeros32(left), from+k, k)
 		}
 	}
@@ -80,15 +83,7 @@ func (g *fastGroup) setFence(r *rotation, flags uint32) {
 			continue
 		}
 		lane.fenced = true
-		for k := range lane.fence {
-			x, y := lane.fence[k].normal()
-			x, y = x/o.cube, y/o.cube
-			sides := &r.orbits.Sides[k]
-			sides.XX[l], sides.XY[l], sides.YY[l] = float64(x*x), float64(2*float64(x*y)), float64(y*y)
-		}
-		least := float64(lane.least * o.cube)
-		r.orbits.First[l], r.orbits.Second[l] = o.phase/least, o.turn.jump/least
-		r.orbits.Inner[l] = 1 / float64(least*least)
+		r.setOrbits(l, o.cube, -o.phase, o.turn.jump)
 	}
 }
 

@@ -10,6 +10,7 @@ import (
 // rotate puts RotD50 and RotD100 of the members into dst50 and dst100, in units
 // of the motion.
 func (g *slowGroup) rotate(r *rotation, dst50, dst100 []float64) {
+	r.cut, r.loose = 0, 0
 	for l := range g.members {
 		g.begin(r, l)
 	}
@@ -50,7 +51,23 @@ func (g *slowGroup) begin(r *rotation, l int) {
 	lane.piece = lane.rows
 	if lane.cuts > 1 {
 		lane.piece = bent
+		r.cut |= 1 << l
 	}
+	if lane.isLoose() {
+		r.loose |= 1 << l
+		setVibration(r.vibration, l, o, &lane.whole)
+	}
+}
+
+// setVibration sets what makes free vibrations about the straight-line solutions of
+// steps (type line), with velocities over ω, of what an oscillator's rows hold.
+func setVibration(q *kernel.Vibration, l int, o *slow, w *line) {
+	scale, exact := o.eq.scale, &o.exact
+	speed := float64(o.inverse * w.inverse)
+	q.Scale[l], q.Level[l], q.Slope[l] = scale, w.square, -float64(w.square*w.lag)
+	q.Carry[l], q.Change[l] = -float64(speed*exact.uu)*scale, float64(speed*scale)
+	q.Push[l] = -float64(speed * (exact.pu + exact.qu))
+	q.Bend[l] = float64(w.inverse*w.square) - float64(speed*exact.qu)
 }
 
 // everyOf returns a number of steps, a power of two, over which the bound of func
@@ -149,25 +166,50 @@ func (g *slowGroup) setFence(r *rotation, flags uint32, a float64) {
 			x, y := lane.fence[k].normal()
 			r.fence.Sides[k].X[l], r.fence.Sides[k].Y[l] = float64(scale*x), float64(scale*y)
 		}
+		if r.loose>>l&1 == 1 {
+			w := &lane.whole
+			r.setOrbits(l, 1, -w.square, float64(w.square*w.lag))
+		}
 	}
 }
 
 // gatherPieces collects the pieces of so many steps that are not within the fence.
 func (g *slowGroup) gatherPieces(r *rotation, from, rows, every int, flags uint32) {
+	if cut := flags & r.cut; cut != 0 {
+		g.gatherSteps(r, from, rows, cut)
+		flags &^= cut
+	}
 	x, y, rowFlags := r.pair[0].rows[:rows], r.pair[1].rows[:rows], r.pair[0].rowFlags[:rows]
 	for k := 0; k+every < rows; k += every {
 		for left := (rowFlags[k] | rowFlags[k+every]) & flags; left != 0; left &= left - 1 {
 			l := bits.TrailingZeros32(left)
 			scale, lane := g.members[l].eq.scale, &r.lane[l]
-			if lane.cuts > 1 {
-				g.gatherStep(r, l, from+k, k)
-				continue
-			}
 			lane.pieces = append(lane.pieces, piece{
 				sample: from + k, every: every, bend: greatestLine(r.stepNorms[from+k : from+k+every]),
 				x: float64(scale * x[k][l]), y: float64(scale * y[k][l]),
 				xNext: float64(scale * x[k+1][l]), yNext: float64(scale * y[k+1][l]),
 				xEnd: float64(scale * x[k+every][l]), yEnd: float64(scale * y[k+every][l])})
+		}
+	}
+}
+
+// gatherSteps collects the parts of steps that are not within the fence.
+func (g *slowGroup) gatherSteps(r *rotation, from, rows int, flags uint32) {
+	rowFlags, stepFlags := r.pair[0].rowFlags[:rows], r.pair[0].stepFlags[:rows-1]
+	loose, some := flags&r.loose, uint32(0)
+	for k := range stepFlags {
+		stepFlags[k] = (rowFlags[k] | rowFlags[k+1]) & loose
+		some |= stepFlags[k]
+	}
+	if some != 0 {
+		for _, m := range r.pair {
+			kernel.Vibrate(m.states[:rows-1], r.vibration, m.rows[:rows], m.a[from:from+rows], some)
+		}
+		r.screenOrbits(from, stepFlags)
+	}
+	for k := range stepFlags {
+		for left := stepFlags[k] | (rowFlags[k]|rowFlags[k+1])&flags&^loose; left != 0; left &= left - 1 {
+			g.gatherStep(r, bits.TrailingZeros32(left), from+k, k)
 		}
 	}
 }

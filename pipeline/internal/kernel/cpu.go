@@ -30,9 +30,10 @@ type level struct {
 	turn          func(t *Turning, factors *Row, terms int)
 	widen         func(o *Outline, c *Compass, points *Point, n int)
 	above         func(o *Outline, x float64, set *Above)
-	screenOrbits  func(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32)
+	screenOrbits  func(f *OrbitFence, x, y *Mark, groundX, groundY *float64, lines *Line, flags *uint32, n int)
 	sweep         func(s *Sweep, c *SweepCompass, x, y *Row, n, every int)
 	displace      func(rows *Row, q *Displaced, states *Mark, a *float64, n int)
+	vibrate       func(states *Mark, q *Vibration, rows *Row, a *float64, n int, want uint32)
 	exceeds       func(o *Outline, c, twice *Compass, f *Form) uint64
 	greatestOf    func(o *Outline) float64
 	project       func(rows *Row, rays *Rays, points *Point, n int, want uint32)
@@ -64,6 +65,7 @@ var portable = level{
 	exceeds:       exceedsGeneric,
 	sweep:         sweepGeneric,
 	displace:      displaceGeneric,
+	vibrate:       vibrateGeneric,
 	screenOrbits:  screenOrbitsGeneric,
 	project:       projectGeneric,
 }

@@ -122,9 +122,10 @@ func (c *planeCase) placed(p *placing) *planeCase {
 		rays: one(p, *c.rays), fence: one(p, *c.fence), orbits: one(p, *c.orbits), set: one(p, Above{}),
 		points: copied(p, c.points), rowsX: copied(p, c.rowsX), rowsY: copied(p, c.rowsY),
 		marksX: copied(p, c.marksX), marks: copied(p, c.marks), lines: copied(p, c.lines),
-		ground: copied(p, c.ground), compasses: one(p, *c.compasses), displaced: one(p, *c.displaced),
+		ground: copied(p, c.ground), groundY: copied(p, c.groundY), compasses: one(p, *c.compasses), displaced: one(p, *c.displaced), vibration: one(p, *c.vibration),
 		limit: c.limit, want: c.want, every: c.every, sweep: one(p, Sweep{}),
 		rows: place[Row](p, len(c.points)), level: place[Row](p, len(c.points)),
+		rowsEnd: copied(p, c.rowsEnd), states: place[Mark](p, len(c.points)),
 	}
 	for i := range d.flags {
 		d.flags[i], d.sums[i] = place[uint32](p, len(c.points)), place[Mark](p, len(c.points))

@@ -109,10 +109,15 @@ func sweepAVX2(s *float64, c *float64, x *float64, y *float64, n int, every int)
 //go:noescape
 func displaceAVX2(rows *float64, q *float64, states *float64, a *float64, n int)
 
+// vibrateAVX2 is vibrateGeneric for vectors of 4 lanes.
+//
+//go:noescape
+func vibrateAVX2(states *float64, q *float64, rows *float64, a *float64, n int, want uint32)
+
 // screenOrbitsAVX2 is screenOrbitsGeneric for vectors of 4 lanes.
 //
 //go:noescape
-func screenOrbitsAVX2(fence *float64, x *float64, y *float64, lines *float64, flags *uint32, n int, want uint32)
+func screenOrbitsAVX2(fence *float64, x *float64, y *float64, groundX *float64, groundY *float64, lines *float64, flags *uint32, n int)
 
 // screenFenceAVX2 is screenFenceGeneric for vectors of 4 lanes.
 //
@@ -234,10 +239,15 @@ func sweepAVX512(s *float64, c *float64, x *float64, y *float64, n int, every in
 //go:noescape
 func displaceAVX512(rows *float64, q *float64, states *float64, a *float64, n int)
 
+// vibrateAVX512 is vibrateGeneric for vectors of 8 lanes.
+//
+//go:noescape
+func vibrateAVX512(states *float64, q *float64, rows *float64, a *float64, n int, want uint32)
+
 // screenOrbitsAVX512 is screenOrbitsGeneric for vectors of 8 lanes.
 //
 //go:noescape
-func screenOrbitsAVX512(fence *float64, x *float64, y *float64, lines *float64, flags *uint32, n int, want uint32)
+func screenOrbitsAVX512(fence *float64, x *float64, y *float64, groundX *float64, groundY *float64, lines *float64, flags *uint32, n int)
 
 // screenFenceAVX512 is screenFenceGeneric for vectors of 8 lanes.
 //

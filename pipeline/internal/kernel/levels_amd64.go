@@ -34,6 +34,7 @@ func vectorLevels() []level {
 			exceeds:       exceeding(exceedsAVX512),
 			sweep:         sweeping(sweepAVX512),
 			displace:      displacing(displaceAVX512),
+			vibrate:       vibrating(vibrateAVX512),
 			screenOrbits:  orbiting(screenOrbitsAVX512),
 			project:       projecting(projectAVX512),
 		})
@@ -64,6 +65,7 @@ func vectorLevels() []level {
 			exceeds:       exceeding(exceedsAVX2),
 			sweep:         sweeping(sweepAVX2),
 			displace:      displacing(displaceAVX2),
+			vibrate:       vibrating(vibrateAVX2),
 			screenOrbits:  orbiting(screenOrbitsAVX2),
 			project:       projecting(projectAVX2),
 		})
@@ -192,9 +194,9 @@ func exceeding(f func(o, c, twice, form *float64) uint64) func(*Outline, *Compas
 	}
 }
 
-func orbiting(f func(fence, x, y, lines *float64, flags *uint32, n int, want uint32)) func(*OrbitFence, *Mark, *Mark, *Line, *uint32, int, uint32) {
-	return func(fence *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32) {
-		f(&fence.Sides[0].XX[0], &x.X[0], &y.X[0], &lines.First, flags, n, want)
+func orbiting(f func(fence, x, y, groundX, groundY, lines *float64, flags *uint32, n int)) func(*OrbitFence, *Mark, *Mark, *float64, *float64, *Line, *uint32, int) {
+	return func(fence *OrbitFence, x, y *Mark, groundX, groundY *float64, lines *Line, flags *uint32, n int) {
+		f(&fence.Sides[0].XX[0], &x.X[0], &y.X[0], groundX, groundY, &lines.First, flags, n)
 	}
 }
 
@@ -207,5 +209,11 @@ func sweeping(f func(s, c, x, y *float64, n, every int)) func(*Sweep, *SweepComp
 func displacing(f func(rows, q, states, a *float64, n int)) func(*Row, *Displaced, *Mark, *float64, int) {
 	return func(rows *Row, q *Displaced, states *Mark, a *float64, n int) {
 		f(&rows[0], &q.Scale[0], &states.X[0], a, n)
+	}
+}
+
+func vibrating(f func(states, q, rows, a *float64, n int, want uint32)) func(*Mark, *Vibration, *Row, *float64, int, uint32) {
+	return func(states *Mark, q *Vibration, rows *Row, a *float64, n int, want uint32) {
+		f(&states.X[0], &q.Scale[0], &rows[0], a, n, want)
 	}
 }

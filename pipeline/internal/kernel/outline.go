@@ -110,6 +110,24 @@ func Displace(rows []Row, q *Displaced, states []Mark, a []float64) {
 	}
 }
 
+// Vibration holds for each lane what makes free vibrations of displacements at the
+// ends of a step.
+type Vibration struct{ Scale, Level, Slope, Carry, Change, Push, Bend Row }
+
+// Vibrate sets, with s = a[i+1] − a[i], for the lanes whose bits want has
+//
+//	states[i].X = Scale·rows[i] + Slope·s + Level·a[i]
+//	states[i].Y = Change·(rows[i+1] − rows[i]) + Carry·rows[i] + Bend·s + Push·a[i]
+//
+// Other lanes of states are unspecified, and peaks are left alone. It panics unless
+// there is one state a step, and one more of rows and of a.
+func Vibrate(states []Mark, q *Vibration, rows []Row, a []float64, want uint32) {
+	checkLines(len(states), len(rows)-1, len(a)-1)
+	if len(states) > 0 {
+		current.vibrate(&states[0], q, &rows[0], &a[0], len(states), want)
+	}
+}
+
 // Rays holds a direction for each lane.
 type Rays struct{ Cos, Sin Row }
 
@@ -137,26 +155,38 @@ func ScreenFence(f *Fence, x, y []Row, every int, flags []uint32, want uint32) {
 	}
 }
 
-// OrbitFence holds for each lane the region of free vibrations (x, y) with
-// displacements X and velocities Y for which all of
+// OrbitFence holds for each lane the region of steps in which the sum of a straight
+// line with the middle (mx, my), m = Level·(a[i] + a[i+1]) + Slope·(a[i+1] − a[i]),
+// and of a free vibration (x, y) with displacements X and velocities Y satisfies, for
+// all sides,
 //
-//	XX[i]·(x.X² + x.Y²) + XY[i]·(x.X·y.X + x.Y·y.Y) + YY[i]·(y.X² + y.Y²) <= max(0, 1 − First·line.First − Second·line.Second)²
+//	XX·(x.X² + x.Y²) + XY·(x.X·y.X + x.Y·y.Y) + YY·(y.X² + y.Y²) <= max(0, 1 − |X·mx + Y·my| − Rise·line.Second)²
 //
-// hold, or Inner·(x.X² + x.Y² + y.X² + y.Y²) in place of them.
+// or Inner·(x.X² + x.Y² + y.X² + y.Y²) <= max(0, 1 − First·line.First − Second·line.Second)².
 type OrbitFence struct {
-	Sides                [Sides]struct{ XX, XY, YY Row }
+	Sides                [Sides]struct{ XX, XY, YY, X, Y Row }
 	First, Second, Inner Row
+	Level, Slope, Rise   Row
 }
 
-// ScreenOrbits sets bit l of flags[i] where (x[i], y[i]) is not within the region
-// of lane l and l is one of the bits of want, and clears it elsewhere. It panics if
-// lengths differ.
-func ScreenOrbits(f *OrbitFence, x, y []Mark, lines []Line, flags []uint32, want uint32) {
-	checkLines(len(x), len(y), len(flags))
-	checkLines(len(x), len(lines), len(flags))
-	clear(flags)
-	if len(x) > 0 {
-		current.screenOrbits(f, &x[0], &y[0], &lines[0], &flags[0], len(x), want)
+// Orbits are the free vibrations of two motions at the start of each step, their
+// ground accelerations, and of each step the line for an OrbitFence.
+type Orbits struct {
+	X, Y             []Mark
+	GroundX, GroundY []float64
+	Lines            []Line
+}
+
+// ScreenOrbits clears bit l of flags[i] where step i is within the region of lane l. It
+// panics unless there is one flag, free vibration and line a step, and one more of
+// the ground.
+func ScreenOrbits(f *OrbitFence, o *Orbits, flags []uint32) {
+	n := len(flags)
+	checkLines(len(o.X), len(o.Y), n)
+	checkLines(len(o.GroundX)-1, len(o.GroundY)-1, n)
+	checkLines(len(o.Lines), n, n)
+	if n > 0 {
+		current.screenOrbits(f, &o.X[0], &o.Y[0], &o.GroundX[0], &o.GroundY[0], &o.Lines[0], &flags[0], n)
 	}
 }
 
@@ -263,12 +293,13 @@ func screenFenceGeneric(f *Fence, x, y *Row, every int, flags *uint32, n int, wa
 	}
 }
 
-func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, n int, want uint32) {
+func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, groundX, groundY *float64, lines *Line, flags *uint32, n int) {
 	xs, ys := unsafe.Slice(x, n), unsafe.Slice(y, n)
+	ax, ay := unsafe.Slice(groundX, n+1), unsafe.Slice(groundY, n+1)
 	list, out := unsafe.Slice(lines, n), unsafe.Slice(flags, n)
-	for left := want; left != 0; left &= left - 1 {
-		l := bits.TrailingZeros32(left)
-		for i, line := range list {
+	for i, line := range list {
+		for left := out[i]; left != 0; left &= left - 1 {
+			l := bits.TrailingZeros32(left)
 			a, b, c, d := xs[i].X[l], xs[i].Y[l], ys[i].X[l], ys[i].Y[l]
 			xx, xy, yy := math.FMA(a, a, float64(b*b)), math.FMA(a, c, float64(b*d)), math.FMA(c, c, float64(d*d))
 			r := math.FMA(-f.Second[l], line.Second, math.FMA(-f.First[l], line.First, 1))
@@ -276,17 +307,26 @@ func screenOrbitsGeneric(f *OrbitFence, x, y *Mark, lines *Line, flags *uint32, 
 				r = 0
 			}
 			if !(float64(f.Inner[l]*(xx+yy)) > float64(r*r)) {
+				out[i] &^= 1 << l
 				continue
 			}
-			top := 0.0
+			dx, dy := ax[i+1]-ax[i], ay[i+1]-ay[i]
+			mx := math.FMA(f.Level[l], ax[i]+ax[i+1], float64(f.Slope[l]*dx))
+			my := math.FMA(f.Level[l], ay[i]+ay[i+1], float64(f.Slope[l]*dy))
+			room, top := math.FMA(-f.Rise[l], line.Second, 1), 0.0
 			for k := range f.Sides {
 				side := &f.Sides[k]
-				if x := math.FMA(side.XX[l], xx, math.FMA(side.XY[l], xy, float64(side.YY[l]*yy))); x > top {
-					top = x
+				r := room - math.Abs(math.FMA(side.X[l], mx, float64(side.Y[l]*my)))
+				if !(r > 0) {
+					r = 0
+				}
+				orbit := math.FMA(side.XX[l], xx, math.FMA(side.XY[l], xy, float64(side.YY[l]*yy)))
+				if over := orbit - float64(r*r); over > top {
+					top = over
 				}
 			}
-			if top > float64(r*r) {
-				out[i] |= 1 << l
+			if !(top > 0) {
+				out[i] &^= 1 << l
 			}
 		}
 	}
@@ -326,6 +366,19 @@ func displaceGeneric(rows *Row, q *Displaced, states *Mark, a *float64, n int) {
 		level, slope := ground[i], ground[i+1]-ground[i]
 		for l := range out[i] {
 			out[i][l] = math.FMA(q.Scale[l], list[i].X[l], math.FMA(q.Slope[l], slope, float64(q.Level[l]*level)))
+		}
+	}
+}
+
+func vibrateGeneric(states *Mark, q *Vibration, rows *Row, a *float64, n int, want uint32) {
+	out, list, ground := unsafe.Slice(states, n), unsafe.Slice(rows, n+1), unsafe.Slice(a, n+1)
+	for left := want; left != 0; left &= left - 1 {
+		l := bits.TrailingZeros32(left)
+		for i := range out {
+			level, slope, u := ground[i], ground[i+1]-ground[i], list[i][l]
+			out[i].X[l] = math.FMA(q.Scale[l], u, math.FMA(q.Slope[l], slope, float64(q.Level[l]*level)))
+			forced := math.FMA(q.Bend[l], slope, float64(q.Push[l]*level))
+			out[i].Y[l] = math.FMA(q.Change[l], list[i+1][l]-u, math.FMA(q.Carry[l], u, forced))
 		}
 	}
 }

@@ -132,6 +132,26 @@ func TestSweepAndDisplaceAreTheirDefinition(t *testing.T) {
 	}
 }
 
+// TestVibrateIsItsDefinition checks the lanes asked for.
+func TestVibrateIsItsDefinition(t *testing.T) {
+	use(t, Portable)
+	c := newPlane(9, 0xf00ff003, normal(8))
+	c.run()
+	for i := range c.states {
+		a, s := c.ground[i], c.ground[i+1]-c.ground[i]
+		for l := range Lanes {
+			if c.want>>l&1 == 0 {
+				continue
+			}
+			q, u, end := c.vibration, c.rowsEnd[i][l], c.rowsEnd[i+1][l]
+			x := q.Scale[l]*u + q.Level[l]*a + q.Slope[l]*s
+			y := q.Carry[l]*u + q.Change[l]*(end-u) + q.Push[l]*a + q.Bend[l]*s
+			plainly(t, fmt.Sprintf("displacement %d lane", i), l, c.states[i].X[l], x)
+			plainly(t, fmt.Sprintf("velocity %d lane", i), l, c.states[i].Y[l], y)
+		}
+	}
+}
+
 // TestFencesAreTheirDefinition checks the flags of both fences.
 func TestFencesAreTheirDefinition(t *testing.T) {
 	use(t, Portable)
@@ -182,8 +202,10 @@ func (c *planeCase) inOrbits(i, l int) bool {
 	if o.Inner[l]*(xx+yy) <= room {
 		return true
 	}
+	middle := func(a []float64) float64 { return o.Level[l]*(a[i]+a[i+1]) + o.Slope[l]*(a[i+1]-a[i]) }
 	for _, side := range o.Sides {
-		if side.XX[l]*xx+side.XY[l]*xy+side.YY[l]*yy > room {
+		line := math.Abs(side.X[l]*middle(c.ground)+side.Y[l]*middle(c.groundY)) + o.Rise[l]*c.lines[i].Second
+		if side.XX[l]*xx+side.XY[l]*xy+side.YY[l]*yy > math.Pow(max(0, 1-line), 2) {
 			return false
 		}
 	}
@@ -225,12 +247,21 @@ func TestPlaneLengths(t *testing.T) {
 		"fence":   func() { ScreenFence(c.fence, c.rowsX, c.rowsY[:2], 1, c.flags[0], 1) },
 		"flags":   func() { ScreenFence(c.fence, c.rowsX, c.rowsY, 1, c.flags[0][:2], 1) },
 		"every":   func() { ScreenFence(c.fence, c.rowsX, c.rowsY, 0, c.flags[0], 1) },
-		"orbits":  func() { ScreenOrbits(c.orbits, c.marksX, c.marks[:2], c.lines, c.flags[1], 1) },
-		"lines":   func() { ScreenOrbits(c.orbits, c.marksX, c.marks, c.lines[:2], c.flags[1], 1) },
-		"sweep":   func() { c.sweep.Add(c.compasses, c.rowsX[:2], c.rowsY, 1) },
-		"states":  func() { Displace(c.level, c.displaced, c.marks[:2], c.ground) },
-		"ground":  func() { Displace(c.level, c.displaced, c.marks, c.ground[:3]) },
-		"peaks":   func() { JoinPeaks(c.sums[0], c.marksX, c.marks[:2], true) },
+		"orbits": func() {
+			ScreenOrbits(c.orbits, &Orbits{c.marksX, c.marks[:2], c.ground, c.ground, c.lines}, c.flags[1])
+		},
+		"grounds": func() {
+			ScreenOrbits(c.orbits, &Orbits{c.marksX, c.marks, c.ground, c.ground[:3], c.lines}, c.flags[1])
+		},
+		"lines": func() {
+			ScreenOrbits(c.orbits, &Orbits{c.marksX, c.marks, c.ground, c.ground, c.lines[:2]}, c.flags[1])
+		},
+		"sweep":  func() { c.sweep.Add(c.compasses, c.rowsX[:2], c.rowsY, 1) },
+		"states": func() { Displace(c.level, c.displaced, c.marks[:2], c.ground) },
+		"ground": func() { Displace(c.level, c.displaced, c.marks, c.ground[:3]) },
+		"steps":  func() { Vibrate(c.states, c.vibration, c.rowsX, c.ground, 1) },
+		"slopes": func() { Vibrate(c.states, c.vibration, c.rowsEnd, c.ground[:3], 1) },
+		"peaks":  func() { JoinPeaks(c.sums[0], c.marksX, c.marks[:2], true) },
 	} {
 		t.Run(name, func(t *testing.T) {
 			defer func() {

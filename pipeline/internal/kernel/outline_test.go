@@ -25,8 +25,11 @@ type planeCase struct {
 	marksX, marks []Mark
 	lines         []Line
 	ground        []float64 // one more than points
+	groundY       []float64
 	compasses     *SweepCompass
 	displaced     *Displaced
+	vibration     *Vibration
+	rowsEnd       []Row // rowsX and one more
 	want          uint32
 	every         int // of Sweep.Add and ScreenFence
 
@@ -34,7 +37,8 @@ type planeCase struct {
 	exceeds  bool
 	greatest float64
 	rows     []Row
-	level    []Row // what Displace makes
+	level    []Row  // what Displace makes
+	states   []Mark // what Vibrate makes
 	sweep    *Sweep
 	flags    [2][]uint32
 	sums     [2][]Mark
@@ -57,7 +61,8 @@ func newPlane(n int, want uint32, next func() float64) *planeCase {
 		rays: new(Rays), fence: new(Fence), orbits: new(OrbitFence), set: new(Above),
 		points: make([]Point, n), rowsX: make([]Row, n), rowsY: make([]Row, n),
 		marksX: make([]Mark, n), marks: make([]Mark, n), lines: make([]Line, n),
-		ground: make([]float64, n+1), compasses: new(SweepCompass), displaced: new(Displaced),
+		ground: make([]float64, n+1), groundY: make([]float64, n+1), compasses: new(SweepCompass), displaced: new(Displaced),
+		vibration: new(Vibration), rowsEnd: make([]Row, n+1), states: make([]Mark, n),
 		rows: make([]Row, n), level: make([]Row, n), sweep: new(Sweep), want: want, every: 1, limit: math.Abs(next()),
 	}
 	for i := range c.flags {
@@ -100,8 +105,12 @@ func (c *planeCase) drawRows(next func() float64) {
 			c.marksX[i].Peak[l], c.marks[i].Peak[l] = math.Abs(next()), math.Abs(next())
 		}
 	}
+	copy(c.rowsEnd, c.rowsX)
+	for l := range Lanes {
+		c.rowsEnd[len(c.points)][l] = next()
+	}
 	for i := range c.ground {
-		c.ground[i] = next()
+		c.ground[i], c.groundY[i] = next(), next()
 	}
 }
 
@@ -109,15 +118,21 @@ func (c *planeCase) drawLanes(next func() float64) {
 	for l := range Lanes {
 		c.rays.Cos[l], c.rays.Sin[l] = next(), next()
 		c.displaced.Scale[l], c.displaced.Slope[l], c.displaced.Level[l] = next(), next(), next()
+		v := c.vibration
+		for _, row := range []*Row{&v.Scale, &v.Level, &v.Slope, &v.Carry, &v.Change, &v.Push, &v.Bend} {
+			row[l] = next()
+		}
 		c.fence.Limit[l] = 2 * math.Abs(next())
 		for k := range c.fence.Sides {
 			c.fence.Sides[k].X[l], c.fence.Sides[k].Y[l] = next(), next()
 		}
 		o := c.orbits
+		o.Level[l], o.Slope[l], o.Rise[l] = 0.3*next(), 0.3*next(), 0.3*math.Abs(next())
 		o.First[l], o.Second[l], o.Inner[l] = 0.3*math.Abs(next()), 0.3*math.Abs(next()), math.Abs(next())
 		for k := range o.Sides {
 			x, y := 0.3*next(), 0.3*next()
-			o.Sides[k].XX[l], o.Sides[k].XY[l], o.Sides[k].YY[l] = x*x, 2*x*y, y*y
+			side := &o.Sides[k]
+			side.XX[l], side.XY[l], side.YY[l], side.X[l], side.Y[l] = x*x, 2*x*y, y*y, x, y
 		}
 	}
 }
@@ -135,6 +150,7 @@ func (c *planeCase) run() {
 	}
 	c.sweep.Add(c.compasses, c.rowsX, c.rowsY, c.every)
 	Displace(c.level, c.displaced, c.marksX, c.ground)
+	Vibrate(c.states, c.vibration, c.rowsEnd, c.ground, c.want)
 	Widen(c.outline, c.compass, c.points)
 	c.outline.Above(c.limit, c.set)
 	c.exceeds = c.outline.Exceeds(c.compass, c.twice, c.form)
@@ -142,20 +158,25 @@ func (c *planeCase) run() {
 	Project(c.rows, c.rays, c.points, c.want)
 	for i := range c.flags {
 		for j := range c.flags[i] {
-			c.flags[i][j] = 0xdeadbeef
+			c.flags[i][j] = []uint32{0xdeadbeef, c.want}[i]
 		}
 	}
 	ScreenFence(c.fence, c.rowsX, c.rowsY, c.every, c.flags[0], c.want)
-	ScreenOrbits(c.orbits, c.marksX, c.marks, c.lines, c.flags[1], c.want)
+	ScreenOrbits(c.orbits, c.inOrbit(), c.flags[1])
 	JoinPeaks(c.sums[0], c.marksX, c.marks, false)
 	JoinPeaks(c.sums[1], c.marksX, c.marks, true)
 	for i := range c.rows {
 		for l := range Lanes {
 			if c.want>>l&1 == 0 {
-				c.rows[i][l] = 0
+				c.rows[i][l], c.states[i].X[l], c.states[i].Y[l] = 0, 0, 0
 			}
 		}
 	}
+}
+
+// inOrbit returns the marks as free vibrations.
+func (c *planeCase) inOrbit() *Orbits {
+	return &Orbits{c.marksX, c.marks, c.ground, c.groundY, c.lines}
 }
 
 // part is the bits of some of what run made.
@@ -184,6 +205,7 @@ func (c *planeCase) made() []part {
 	}
 	for i := range c.points {
 		list = append(list, numbers(fmt.Sprint("row ", i), c.rows[i][:]...), numbers(fmt.Sprint("level ", i), c.level[i][:]...),
+			numbers(fmt.Sprint("vibration ", i), append(c.states[i].X[:], c.states[i].Y[:]...)...),
 			part{fmt.Sprint("flags ", i), []uint64{uint64(c.flags[0][i]), uint64(c.flags[1][i])}},
 			numbers(fmt.Sprint("sum of squares ", i), c.sums[0][i].Peak[:]...),
 			numbers(fmt.Sprint("sum ", i), c.sums[1][i].Peak[:]...))

@@ -82,10 +82,11 @@ func TestScreenOrbitsOverflow(t *testing.T) {
 		f.Sides[1].XX[l], f.Sides[1].XY[l], f.Sides[1].YY[l] = 1, 1, 1
 		x[0].X[l], y[0].X[l] = 1e200, 1e200
 	}
+	o := &Orbits{x, y, make([]float64, 2), make([]float64, 2), make([]Line, 1)}
 	for _, name := range Names() {
 		use(t, name)
-		flags := make([]uint32, 1)
-		if ScreenOrbits(f, x, y, make([]Line, 1), flags, ^uint32(0)); flags[0] != ^uint32(0) {
+		flags := []uint32{^uint32(0)}
+		if ScreenOrbits(f, o, flags); flags[0] != ^uint32(0) {
 			t.Errorf("%s: flags %#x, want all", name, flags[0])
 		}
 	}

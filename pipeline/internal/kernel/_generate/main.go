@@ -60,6 +60,7 @@ func main() {
 		l.exceeds()
 		l.sweep()
 		l.displace()
+		l.vibrate()
 		l.screenOrbits()
 		l.screenFence()
 		l.greatestOf()

@@ -285,88 +285,165 @@ func rowsOf(n reg.Register) reg.Register {
 }
 
 // screenOrbits takes a vector of lanes through all rows, without those that hold
-// no lane asked for.
+// no lane with a flag.
 func (l level) screenOrbits() {
-	TEXT("screenOrbits"+l.name, NOSPLIT, "func(fence, x, y, lines *float64, flags *uint32, n int, want uint32)")
+	TEXT("screenOrbits"+l.name, NOSPLIT, "func(fence, x, y, groundX, groundY, lines *float64, flags *uint32, n int)")
 	Pragma("noescape")
 	Doc(fmt.Sprintf("screenOrbits%s is screenOrbitsGeneric for vectors of %d lanes.", l.name, l.width))
+	fence := Load(Param("fence"), GP64())
+	zero, one, mask := l.vector(), l.constant(1), l.absolute()
+	l.zero(zero)
+	for v := range lanes / l.width {
+		l.orbitVector(fence, v, zero, one, mask)
+	}
+	VZEROUPPER()
+	RET()
+}
+
+func (l level) orbitVector(fence reg.Register, v int, zero, one, mask reg.VecVirtual) {
+	x, y, lines := Load(Param("x"), GP64()), Load(Param("y"), GP64()), Load(Param("lines"), GP64())
+	groundX, groundY := Load(Param("groundX"), GP64()), Load(Param("groundY"), GP64())
+	out, left := Load(Param("flags"), GP64()), Load(Param("n"), GP64())
+	bits, inner, known := GP32(), GP32(), GP32()
+	within, next := fmt.Sprintf("within%d", v), fmt.Sprintf("next%d", v)
+	lanes := uint32(1<<l.width-1) << (v * l.width)
+	rest := func(i int) operand.Mem { return l.at(fence, 5*fenceSides+i, 0, v) } // First, Second, Inner, Level, Slope, Rise
+	input{}.loop(fmt.Sprintf("line%d", v), out, left, nil, func() {
+		MOVL(operand.Mem{Base: out}, known)
+		TESTL(operand.U32(lanes), known)
+		JZ(operand.LabelRef(next))
+		xx, yy, r, s, change := l.vector(), l.vector(), l.vector(), l.vector(), l.vector()
+		a, b, c, d := l.vector(), l.vector(), l.vector(), l.vector()
+		VMOVUPD(l.at(x, markX, 0, v), a)
+		VMOVUPD(l.at(x, markY, 0, v), b)
+		VMOVUPD(l.at(y, markX, 0, v), c)
+		VMOVUPD(l.at(y, markY, 0, v), d)
+		VMULPD(b, b, xx)
+		VFMADD231PD(a, a, xx)
+		VMULPD(d, d, yy)
+		VFMADD231PD(c, c, yy)
+		VMOVAPD(one, r)
+		VBROADCASTSD(operand.Mem{Base: lines}, s)
+		VBROADCASTSD(operand.Mem{Base: lines, Disp: 8}, change)
+		VFNMADD231PD(rest(0), s, r)
+		VFNMADD231PD(rest(1), change, r)
+		VMAXPD(zero, r, r)
+		VMULPD(r, r, r)
+		VADDPD(yy, xx, s)
+		VMULPD(rest(2), s, s)
+		l.compare(s, r, inner)
+		MOVL(inner, bits)
+		TESTL(inner, inner)
+		JZ(operand.LabelRef(within))
+		VMULPD(b, d, b) // xy
+		VFMADD231PD(a, c, b)
+		VMOVAPD(one, r)
+		VFNMADD231PD(rest(5), change, r)
+		l.middle(groundX, rest, a)
+		l.middle(groundY, rest, c)
+		top := d
+		VMOVAPD(zero, top)
+		for k := range fenceSides {
+			side := func(i int) operand.Mem { return l.at(fence, 5*k+i, 0, v) } // XX, XY, YY, X, Y
+			t, room := s, change
+			VMULPD(side(4), c, room)
+			VFMADD231PD(side(3), a, room)
+			l.and(mask, room, room)
+			VSUBPD(room, r, room)
+			VMAXPD(zero, room, room)
+			VMULPD(room, room, room)
+			VMULPD(side(2), yy, t)
+			VFMADD231PD(side(1), b, t)
+			VFMADD231PD(side(0), xx, t)
+			VSUBPD(room, t, t)
+			VMAXPD(top, t, top)
+		}
+		l.compare(top, zero, bits)
+		ANDL(inner, bits)
+		if v > 0 {
+			SHLL(operand.U8(v*l.width), bits)
+		}
+		Label(within)
+		ORL(operand.U32(^lanes), bits)
+		ANDL(bits, known)
+		MOVL(known, operand.Mem{Base: out})
+		Label(next)
+		ADDQ(operand.U32(3*row), x)
+		ADDQ(operand.U32(3*row), y)
+		ADDQ(operand.Imm(8), groundX)
+		ADDQ(operand.Imm(8), groundY)
+		ADDQ(operand.Imm(16), lines)
+		SUBQ(operand.Imm(4), out) // the loop moves on by 8
+	})
+}
+
+// middle sets m to the middle of the straight line of a step.
+func (l level) middle(ground reg.Register, rest func(int) operand.Mem, m reg.VecVirtual) {
+	at, next, sum := l.vector(), l.vector(), l.vector()
+	VBROADCASTSD(operand.Mem{Base: ground}, at)
+	VBROADCASTSD(operand.Mem{Base: ground, Disp: 8}, next)
+	VADDPD(next, at, sum)
+	VSUBPD(at, next, next)
+	VMULPD(rest(4), next, m)
+	VFMADD231PD(rest(3), sum, m)
+}
+
+// vibrate takes a vector of lanes through all rows, without those that hold no lane
+// asked for.
+func (l level) vibrate() {
+	TEXT("vibrate"+l.name, NOSPLIT, "func(states, q, rows, a *float64, n int, want uint32)")
+	Pragma("noescape")
+	Doc(fmt.Sprintf("vibrate%s is vibrateGeneric for vectors of %d lanes.", l.name, l.width))
 	in := map[string]reg.Register{}
-	for _, name := range []string{"fence", "x", "y", "lines", "flags", "n"} {
+	for _, name := range []string{"states", "q", "rows", "a", "n"} {
 		in[name] = Load(Param(name), GP64())
 	}
 	want := Load(Param("want"), GP32())
-	zero, one, word, half := l.vector(), l.vector(), GP64(), XMM()
-	l.zero(zero)
-	MOVQ(operand.U64(0x3ff0000000000000), word) // 1
-	VMOVQ(word, half)
-	VBROADCASTSD(half, one)
 	for v := range lanes / l.width {
 		next := fmt.Sprintf("skip%d", v)
 		TESTL(operand.U32((1<<l.width-1)<<(v*l.width)), want)
 		JZ(operand.LabelRef(next))
-		l.orbitVector(in, want, v, zero, one)
+		l.vibrateVector(in, v)
 		Label(next)
 	}
 	VZEROUPPER()
 	RET()
 }
 
-func (l level) orbitVector(in map[string]reg.Register, want reg.Register, v int, zero, one reg.VecVirtual) {
-	x, y, lines, out, left := GP64(), GP64(), GP64(), GP64(), GP64()
-	MOVQ(in["x"], x)
-	MOVQ(in["y"], y)
-	MOVQ(in["lines"], lines)
-	MOVQ(in["flags"], out)
+func (l level) vibrateVector(in map[string]reg.Register, v int) {
+	states, rows, a, left := GP64(), GP64(), GP64(), GP64()
+	MOVQ(in["states"], states)
+	MOVQ(in["rows"], rows)
+	MOVQ(in["a"], a)
 	MOVQ(in["n"], left)
-	fence, bits, inner := in["fence"], GP32(), GP32()
-	within := fmt.Sprintf("within%d", v)
-	input{}.loop(fmt.Sprintf("line%d", v), out, left, nil, func() {
-		a, b, c, d := l.vector(), l.vector(), l.vector(), l.vector()
-		VMOVUPD(l.at(x, markX, 0, v), a)
-		VMOVUPD(l.at(x, markY, 0, v), b)
-		VMOVUPD(l.at(y, markX, 0, v), c)
-		VMOVUPD(l.at(y, markY, 0, v), d)
-		xx, xy, yy, top := l.vector(), l.vector(), l.vector(), l.vector()
-		VMULPD(b, b, xx)
-		VFMADD231PD(a, a, xx)
-		VMULPD(d, d, yy)
-		VFMADD231PD(c, c, yy)
-		r, s := l.vector(), l.vector()
-		VMOVAPD(one, r)
-		VBROADCASTSD(operand.Mem{Base: lines}, s)
-		VFNMADD231PD(l.at(fence, 3*fenceSides, 0, v), s, r)
-		VBROADCASTSD(operand.Mem{Base: lines, Disp: 8}, s)
-		VFNMADD231PD(l.at(fence, 3*fenceSides+1, 0, v), s, r)
-		VMAXPD(zero, r, r)
-		VMULPD(r, r, r)
-		VADDPD(yy, xx, s)
-		VMULPD(l.at(fence, 3*fenceSides+2, 0, v), s, s)
-		l.compare(s, r, inner)
-		TESTL(inner, inner)
-		JZ(operand.LabelRef(within))
-		VMULPD(b, d, xy)
-		VFMADD231PD(a, c, xy)
-		VMOVAPD(zero, top)
-		for k := range fenceSides {
-			t := l.vector()
-			VMULPD(l.at(fence, 3*k+2, 0, v), yy, t)
-			VFMADD231PD(l.at(fence, 3*k+1, 0, v), xy, t)
-			VFMADD231PD(l.at(fence, 3*k, 0, v), xx, t)
-			VMAXPD(top, t, top)
-		}
-		l.compare(top, r, bits)
-		ANDL(inner, bits)
-		if v > 0 {
-			SHLL(operand.U8(v*l.width), bits)
-		}
-		ANDL(want, bits)
-		ORL(bits, operand.Mem{Base: out})
-		Label(within)
-		ADDQ(operand.U32(3*row), x)
-		ADDQ(operand.U32(3*row), y)
-		ADDQ(operand.Imm(16), lines)
-		SUBQ(operand.Imm(4), out) // the loop moves on by 8
-	})
+	q := make([]reg.VecVirtual, 7) // Scale, Level, Slope, Carry, Change, Push, Bend
+	for i := range q {
+		q[i] = l.vector()
+		VMOVUPD(l.at(in["q"], i, 0, v), q[i])
+	}
+	at, slope, u, change, x, y := l.vector(), l.vector(), l.vector(), l.vector(), l.vector(), l.vector()
+	loop := fmt.Sprintf("row%d", v)
+	Label(loop)
+	VBROADCASTSD(operand.Mem{Base: a}, at)
+	VBROADCASTSD(operand.Mem{Base: a, Disp: 8}, slope)
+	VSUBPD(at, slope, slope)
+	VMOVUPD(l.at(rows, 0, 0, v), u)
+	VMOVUPD(l.at(rows, 1, 0, v), change)
+	VSUBPD(u, change, change)
+	VMULPD(q[1], at, x)
+	VFMADD231PD(q[2], slope, x)
+	VFMADD231PD(q[0], u, x)
+	VMOVUPD(x, l.at(states, markX, 0, v))
+	VMULPD(q[5], at, y)
+	VFMADD231PD(q[6], slope, y)
+	VFMADD231PD(q[3], u, y)
+	VFMADD231PD(q[4], change, y)
+	VMOVUPD(y, l.at(states, markY, 0, v))
+	ADDQ(operand.U32(3*row), states)
+	ADDQ(operand.U32(row), rows)
+	ADDQ(operand.Imm(8), a)
+	DECQ(left)
+	JNZ(operand.LabelRef(loop))
 }
 
 // sweepCount is kernel.Sweeps.
