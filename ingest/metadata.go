@@ -2,12 +2,15 @@ package ingest
 
 import (
 	"cmp"
+	"context"
 	"errors"
 	"fmt"
 	"os"
 	"path/filepath"
 	"slices"
+	"strconv"
 	"strings"
+	"sync"
 	"time"
 
 	"swaybook/ingest/fdsnxml"
@@ -18,16 +21,28 @@ import (
 // that add excepted.
 type Metadata struct {
 	inventory fdsnxml.Inventory
-	events    []CatalogueEvent
 	known     map[string]bool // public identifiers of events
+	notes     []MetadataNote
+
+	ordering sync.Mutex // guards what follows
+	events   []CatalogueEvent
+	ordered  bool
+}
+
+// MetadataNote is what of a document was not taken, or is doubtful, and the line
+// of the element.
+type MetadataNote struct {
+	Path string
+	Line int
+	Text string
 }
 
 // CatalogueEvent is an event of a QuakeML document.
 type CatalogueEvent struct {
 	Event
-	PublicID string // the document's own identifier, unique in the world
-	Kind     string // "earthquake", "quarry blast" …, "" where not stated
-	Warnings []string
+	// PublicID is the document's own identifier, unique in the world, or made of time
+	// and place where it states none.
+	PublicID string
 }
 
 // The reasons for which a file is no record but was put to use.
@@ -38,25 +53,25 @@ const (
 
 // ReadMetadata reads StationXML and QuakeML documents: those named, and those
 // among the *.xml of folders named, in the order of the paths' names. What
-// several say alike counts once. An error
-// is a *ParseError, or says that a path cannot be listed.
-func ReadMetadata(paths []string) (*Metadata, error) {
+// several say alike counts once. An error is a *ParseError, the context's, or says
+// that a path cannot be listed.
+func ReadMetadata(ctx context.Context, paths []string) (*Metadata, error) {
 	m := &Metadata{}
 	for _, path := range slices.Sorted(slices.Values(paths)) {
-		if err := m.addPath(path); err != nil {
+		if err := m.addPath(ctx, path); err != nil {
 			return nil, err
 		}
 	}
 	return m, nil
 }
 
-func (m *Metadata) addPath(path string) error {
+func (m *Metadata) addPath(ctx context.Context, path string) error {
 	info, err := os.Stat(path)
 	if err != nil {
 		return fmt.Errorf("read metadata: %w", err)
 	}
 	if !info.IsDir() {
-		used, err := m.AddFile(path)
+		used, err := m.AddFile(ctx, path)
 		if err == nil && used == "" {
 			err = &ParseError{Path: path, Err: errors.New("neither StationXML nor QuakeML")}
 		}
@@ -68,7 +83,7 @@ func (m *Metadata) addPath(path string) error {
 	}
 	for _, e := range entries {
 		if !e.IsDir() && MayBeMetadata(e.Name()) {
-			if _, err := m.AddFile(filepath.Join(path, e.Name())); err != nil {
+			if _, err := m.AddFile(ctx, filepath.Join(path, e.Name())); err != nil {
 				return err
 			}
 		}
@@ -82,85 +97,87 @@ func MayBeMetadata(base string) bool {
 }
 
 // AddFile is Add of the file at path.
-func (m *Metadata) AddFile(path string) (used string, err error) {
+func (m *Metadata) AddFile(ctx context.Context, path string) (used string, err error) {
 	data, _, err := Read(path)
 	if err != nil {
 		return "", err
 	}
-	return m.Add(path, data)
+	return m.Add(ctx, path, data)
 }
 
 // Add reads one more document, which lies at path, and says how it is used, ""
-// where it is neither StationXML nor QuakeML. An error is a *ParseError; nothing
-// is added with it. The data are not kept.
-func (m *Metadata) Add(path string, data []byte) (used string, err error) {
+// where it is neither StationXML nor QuakeML. What of it is left out is noted. An
+// error is a *ParseError, or the context's; nothing is added with it. The data are
+// not kept.
+func (m *Metadata) Add(ctx context.Context, path string, data []byte) (used string, err error) {
 	switch fdsnxml.Kind(data) {
 	case fdsnxml.Stations:
-		v, err := fdsnxml.ReadStations(data)
+		v, err := fdsnxml.ReadStations(ctx, data)
 		if err != nil {
-			return "", metadataFault(path, err)
+			return "", metadataFault(ctx, path, err)
 		}
+		m.note(path, v.Notes)
 		m.inventory.Merge(v)
 		return StationMetadataUsed, nil
 	case fdsnxml.Events:
-		events, err := fdsnxml.ReadEvents(data)
+		events, left, err := fdsnxml.ReadEvents(ctx, data)
 		if err != nil {
-			return "", metadataFault(path, err)
+			return "", metadataFault(ctx, path, err)
 		}
-		m.addEvents(events)
+		m.note(path, left)
+		m.addEvents(path, events)
 		return EventMetadataUsed, nil
 	}
 	return "", nil
 }
 
-func metadataFault(path string, err error) error {
+func metadataFault(ctx context.Context, path string, err error) error {
+	if stopped := ctx.Err(); stopped != nil {
+		return stopped
+	}
 	if e, ok := errors.AsType[*fdsnxml.Error](err); ok {
 		return &ParseError{Path: path, Line: e.Line, Err: e.Err}
 	}
 	return &ParseError{Path: path, Err: err}
 }
 
-// addEvents keeps the events in the order of Events. Of an event that is there
-// already the first stays.
-func (m *Metadata) addEvents(events []fdsnxml.Event) {
+func (m *Metadata) note(path string, notes []fdsnxml.Note) {
+	for _, n := range notes {
+		m.notes = append(m.notes, MetadataNote{path, n.Line, n.Text})
+	}
+}
+
+// Notes returns what was noted, in the order of the documents.
+func (m *Metadata) Notes() []MetadataNote {
+	if m == nil {
+		return nil
+	}
+	return m.notes
+}
+
+// addEvents keeps the events of a document. Of an event that is there already the
+// first stays.
+func (m *Metadata) addEvents(path string, events []fdsnxml.Event) {
 	if m.known == nil {
 		m.known = map[string]bool{}
 	}
-	var fresh []CatalogueEvent
+	m.ordering.Lock()
+	defer m.ordering.Unlock()
 	for i := range events {
-		if e := catalogueEvent(&events[i]); !m.known[e.PublicID] {
+		e, doubts := catalogueEvent(&events[i])
+		for _, d := range doubts {
+			m.notes = append(m.notes, MetadataNote{path, events[i].Line, fmt.Sprintf("event %.80s: %s", e.PublicID, d)})
+		}
+		if !m.known[e.PublicID] {
 			m.known[e.PublicID] = true
-			fresh = append(fresh, e)
+			m.events, m.ordered = append(m.events, e), false
 		}
 	}
-	slices.SortFunc(fresh, byOrigin)
-	m.events = merged(m.events, fresh)
-}
-
-func byOrigin(a, b CatalogueEvent) int {
-	return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
-}
-
-// merged puts more events among others, both in order, and returns all. It moves
-// no event that comes before the first of them.
-func merged(events, more []CatalogueEvent) []CatalogueEvent {
-	i, j := len(events), len(more)
-	events = append(events, more...)
-	for at := len(events) - 1; j > 0; at-- {
-		if i > 0 && byOrigin(events[i-1], more[j-1]) > 0 {
-			i--
-			events[at] = events[i]
-		} else {
-			j--
-			events[at] = more[j]
-		}
-	}
-	return events
 }
 
 // IsEmpty reports whether no document has been read.
 func (m *Metadata) IsEmpty() bool {
-	return m == nil || len(m.events)+len(m.inventory.Stations)+len(m.inventory.Channels) == 0
+	return m == nil || len(m.known)+len(m.inventory.Stations)+len(m.inventory.Channels) == 0
 }
 
 // Events returns the events in the order of their origin times. The caller must
@@ -169,24 +186,38 @@ func (m *Metadata) Events() []CatalogueEvent {
 	if m == nil {
 		return nil
 	}
+	m.ordering.Lock()
+	defer m.ordering.Unlock()
+	if !m.ordered {
+		slices.SortFunc(m.events, func(a, b CatalogueEvent) int {
+			return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
+		})
+		m.ordered = true
+	}
 	return m.events
 }
 
-func catalogueEvent(e *fdsnxml.Event) CatalogueEvent {
-	out := CatalogueEvent{
-		Event: Event{
-			ID: orElse(e.Code, lastOfID(e.PublicID)), Name: e.Name, Origin: e.Origin,
-			Latitude: Known(e.Latitude), Longitude: Known(e.Longitude), MagnitudeType: e.MagnitudeType,
-		},
-		PublicID: e.PublicID, Kind: e.Type, Warnings: e.Warnings,
+// catalogueEvent returns the event as it is used, and what is doubtful of it: it is
+// held to the limits that headers are.
+func catalogueEvent(e *fdsnxml.Event) (out CatalogueEvent, doubts []string) {
+	out.PublicID = orElse(e.PublicID, placeID(e))
+	c := Channel{Event: Event{
+		ID: orElse(e.Code, lastOfID(out.PublicID)), Name: e.Name, Origin: e.Origin,
+		Latitude: Known(e.Latitude), Longitude: Known(e.Longitude), MagnitudeType: e.MagnitudeType, Magnitude: Number(e.Magnitude),
+	}}
+	if e.DepthM.Known {
+		c.Event.DepthKM = Known(e.DepthM.Value / 1000)
 	}
-	if e.DepthM != nil {
-		out.DepthKM = Known(*e.DepthM / 1000)
-	}
-	if e.Magnitude != nil {
-		out.Magnitude = Known(*e.Magnitude)
-	}
-	return out
+	dropImplausible(&c)
+	out.Event = c.Event
+	return out, append(slices.Clip(e.Warnings), c.Warnings...)
+}
+
+// placeID is the identifier of an event that states none: time and place, so that
+// it is the same in every document.
+func placeID(e *fdsnxml.Event) string {
+	degrees := func(v float64) string { return strconv.FormatFloat(v, 'f', -1, 64) }
+	return e.Origin.Format("20060102T150405.999Z") + "_" + degrees(e.Latitude) + "_" + degrees(e.Longitude)
 }
 
 // lastOfID is the part of a public identifier that names the event: the value of
@@ -211,7 +242,7 @@ func (m *Metadata) Station(c *Channel) (s Station, ok bool) {
 	}
 	return Station{
 		Network: c.Station.Network, Code: c.Station.Code, Name: site.Name,
-		Latitude: Known(site.Latitude), Longitude: Known(site.Longitude), ElevationM: Known(site.ElevationM),
+		Latitude: Number(site.Latitude), Longitude: Number(site.Longitude), ElevationM: Number(site.ElevationM),
 	}, true
 }
 

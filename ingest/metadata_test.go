@@ -1,9 +1,13 @@
 package ingest
 
 import (
+	"context"
 	"errors"
+	"fmt"
 	"path/filepath"
 	"reflect"
+	"slices"
+	"strings"
 	"testing"
 	"time"
 )
@@ -11,7 +15,7 @@ import (
 // TestReadMetadata reads a folder, and documents that contradict nothing.
 func TestReadMetadata(t *testing.T) {
 	dir := recordsDir("miniseed")
-	m, err := ReadMetadata([]string{filepath.Join(dir, "events.xml"), dir, filepath.Join(dir, "station.xml")})
+	m, err := ReadMetadata(t.Context(), []string{filepath.Join(dir, "events.xml"), dir, filepath.Join(dir, "station.xml")})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -20,7 +24,7 @@ func TestReadMetadata(t *testing.T) {
 			ID: "tarn2041", Name: "Tarn Ridge", Origin: time.Date(2041, 3, 4, 8, 12, 0, 500_000_000, time.UTC), Latitude: Known(30.125), Longitude: Known(150.25),
 			DepthKM: Known(25), Magnitude: Known(5.7), MagnitudeType: "Mw",
 		},
-		PublicID: "smi:example.org/event/tarn2041", Kind: "earthquake",
+		PublicID: "smi:example.org/event/tarn2041",
 	}}
 	if got := m.Events(); !reflect.DeepEqual(got, want) {
 		t.Errorf("events %+v, want %+v", got, want)
@@ -68,15 +72,150 @@ func TestMetadataRefusals(t *testing.T) {
 		{broken, broken + ":2: unexpected EOF"},
 		{dir, broken + ":2: unexpected EOF"},
 	} {
-		if _, err := ReadMetadata([]string{k.path}); err == nil || err.Error() != k.want {
+		if _, err := ReadMetadata(t.Context(), []string{k.path}); err == nil || err.Error() != k.want {
 			t.Errorf("ReadMetadata(%s): %v, want %q", k.path, err, k.want)
 		}
 	}
-	if _, err := ReadMetadata([]string{filepath.Join(dir, "none")}); err == nil {
+	if _, err := ReadMetadata(t.Context(), []string{filepath.Join(dir, "none")}); err == nil {
 		t.Error("a path that is not there: no error")
 	}
 	_, _, err := Parse("f", []byte("<FDSNStationXML/>"), Hints{})
 	if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != "StationXML, not used: only files named *.xml are, alone or in archives named as such, and those of --metadata" {
 		t.Errorf("StationXML as a record: %v", err)
+	}
+}
+
+// readDocument returns what one document says.
+func readDocument(t *testing.T, text string) (*Metadata, string) {
+	t.Helper()
+	m := &Metadata{}
+	if _, err := m.Add(t.Context(), "doc.xml", []byte(text)); err != nil {
+		t.Fatal(err)
+	}
+	var notes []string
+	for _, n := range m.Notes() {
+		notes = append(notes, fmt.Sprintf("%s:%d: %s", n.Path, n.Line, n.Text))
+	}
+	return m, strings.Join(notes, "\n")
+}
+
+// quakeML is a document with one event a line, from line 2 on; each is what stands
+// in its start tag, its origin time, its latitude and its other elements.
+func quakeML(events ...[4]string) string {
+	text := `<quakeml xmlns="http://quakeml.org/xmlns/bed/1.2"><eventParameters>`
+	for _, e := range events {
+		text += fmt.Sprintf("\n<event%s><origin><time><value>%s</value></time><latitude><value>%s</value></latitude><longitude><value>14</value></longitude></origin>%s</event>", e[0], e[1], e[2], e[3])
+	}
+	return text + "</eventParameters></quakeml>"
+}
+
+// Events are held to the limits that headers are, and what is doubtful is noted.
+func TestEventsWithinLimits(t *testing.T) {
+	magnitude := func(v string) string {
+		return "<magnitude><mag><value>" + v + "</value></mag><type>Mw</type></magnitude>"
+	}
+	m, notes := readDocument(t, quakeML(
+		[4]string{` publicID="a"`, "2041-03-04T08:12:00Z", "41", magnitude("10")},
+		[4]string{` publicID="b"`, "2041-03-04T08:13:00Z", "41", magnitude("10.5")},
+		[4]string{` publicID="c"`, "2041-03-04T08:14:00Z", "41", magnitude("-2.5") + magnitude("3")},
+		[4]string{` publicID="d"`, "2041-03-04T08:15:00Z", "0.5", "<type>not existing</type>"},
+		[4]string{` publicID="e"`, "2041-03-04T08:16:00Z", "", ""},
+	))
+	const want = `doc.xml:5: event d: its type is "not existing": left out
+doc.xml:6: event e: no latitude or no longitude: left out
+doc.xml:3: event b: magnitude 10.5 is outside -2 to 10: taken as unknown
+doc.xml:4: event c: of 2 magnitudes none is preferred: a moment magnitude taken, else the first
+doc.xml:4: event c: magnitude -2.5 is outside -2 to 10: taken as unknown`
+	if notes != want {
+		t.Errorf("notes\n%s\nwant\n%s", notes, want)
+	}
+	var got []string
+	for _, e := range m.Events() {
+		got = append(got, fmt.Sprint(e.PublicID, e.Magnitude, e.MagnitudeType))
+	}
+	if want := "[a{10 true}Mw b{0 false} c{0 false}]"; fmt.Sprint(got) != want {
+		t.Errorf("events %v, want %s", got, want)
+	}
+}
+
+// Events without an identifier are told apart by time and place, in one document
+// and in several.
+func TestEventsWithoutIdentifier(t *testing.T) {
+	document := quakeML([4]string{"", "2041-03-04T09:00:00Z", "41.5", ""}, [4]string{"", "2041-03-04T08:00:00.25Z", "41", ""}, [4]string{"", "2041-03-04T08:00:00.25Z", "42", ""})
+	m, _ := readDocument(t, document)
+	if _, err := m.Add(t.Context(), "copy.xml", []byte(document)); err != nil {
+		t.Fatal(err)
+	}
+	var got []string
+	for _, e := range m.Events() {
+		got = append(got, e.PublicID+" "+e.ID)
+	}
+	want := []string{
+		"20410304T080000.25Z_41_14 20410304T080000.25Z_41_14", "20410304T080000.25Z_42_14 20410304T080000.25Z_42_14",
+		"20410304T090000Z_41.5_14 20410304T090000Z_41.5_14",
+	}
+	if !slices.Equal(got, want) {
+		t.Errorf("events %q, want %q", got, want)
+	}
+}
+
+// A station at 0, 0 is nowhere, and a channel that cannot be used loses no other.
+func TestStationMetadataWithDoubts(t *testing.T) {
+	text := string(readFile(t, filepath.Join(recordsDir("miniseed"), "station.xml")))
+	if strings.Count(text, ">30.5<") < 2 {
+		t.Fatal("no coordinates to damage")
+	}
+	m, notes := readDocument(t, strings.Replace(strings.Replace(text, ">30.5<", ">0<", 1), ">149.75<", ">0<", 1))
+	s, ok := m.Station(&Channel{Station: Station{Network: "XX", Code: "TARN"}, Start: mseedStart})
+	if !ok || s.Latitude.Known || s.Longitude.Known || s.ElevationM != Known(212) || !strings.Contains(notes, "station XX.TARN: latitude and longitude are 0: position taken as unknown") {
+		t.Errorf("%+v, %v; notes %s", s, ok, notes)
+	}
+	code := strings.Index(text, `code="HNE"`)
+	at := code + strings.Index(text[code:], "<Latitude>")
+	m, notes = readDocument(t, text[:at]+strings.Replace(text[at:], "<Latitude>30.5</Latitude>", "", 1))
+	if !strings.HasSuffix(notes, "channel XX.TARN.00.HNE: no latitude or no longitude: left out") {
+		t.Errorf("notes %q", notes)
+	}
+	if _, channels, err := Parse("f", mseedFixtures()["three-channels.mseed"], Hints{Metadata: m}); len(channels) != 2 || err == nil {
+		t.Errorf("%d channels, %v; want two beside the one without metadata", len(channels), err)
+	}
+}
+
+// A run that is stopped is no fault of a document.
+func TestMetadataStopped(t *testing.T) {
+	ctx, stop := context.WithCancel(t.Context())
+	stop()
+	var events [][4]string
+	for i := range 200 {
+		events = append(events, [4]string{fmt.Sprintf(` publicID="%d"`, i), "2041-03-04T08:12:00Z", "41", ""})
+	}
+	m := &Metadata{}
+	if used, err := m.Add(ctx, "doc.xml", []byte(quakeML(events...))); err != context.Canceled || used != "" || !m.IsEmpty() {
+		t.Errorf("Add = %q, %v", used, err)
+	}
+}
+
+// BenchmarkAddEvents adds events one document each, the latest first.
+func BenchmarkAddEvents(b *testing.B) {
+	const n = 2000
+	var documents [][]byte
+	size := 0
+	for i := range n {
+		at := mseedStart.Add(-time.Duration(i) * time.Minute).Format(time.RFC3339)
+		d := []byte(quakeML([4]string{fmt.Sprintf(` publicID="%d"`, i), at, "41", ""}))
+		documents, size = append(documents, d), size+len(d)
+	}
+	b.SetBytes(int64(size))
+	b.ReportAllocs()
+	for b.Loop() {
+		m := &Metadata{}
+		for _, d := range documents {
+			if _, err := m.Add(b.Context(), "doc.xml", d); err != nil {
+				b.Fatal(err)
+			}
+		}
+		if len(m.Events()) != n {
+			b.Fatal(len(m.Events()))
+		}
 	}
 }

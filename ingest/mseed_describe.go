@@ -72,9 +72,9 @@ var countWords = []string{"count", "counts", "digital counts"}
 func (c *mseedChannel) sensitivity(e *fdsnxml.Channel) error {
 	name, s := c.id.String(), e.Sensitivity
 	switch {
-	case s == nil && e.Polynomial:
+	case !s.Value.Known && e.Polynomial:
 		return refuse(0, name, "the station metadata give a polynomial, no sensitivity")
-	case s == nil:
+	case !s.Value.Known:
 		return refuse(0, name, "the station metadata give no sensitivity")
 	case isOtherMotion(s.InputUnit):
 		return &NotMotionError{"its sensitivity is for " + s.InputUnit + ", not an acceleration"}
@@ -85,11 +85,11 @@ func (c *mseedChannel) sensitivity(e *fdsnxml.Channel) error {
 	if err != nil {
 		return refuse(0, name, "input unit of the sensitivity: %w", err)
 	}
-	c.Unit, c.UnitMPS2 = "counts", unit.MPS2/math.Abs(s.Value)
+	c.Unit, c.UnitMPS2 = "counts", unit.MPS2/math.Abs(s.Value.Value)
 	if !(c.UnitMPS2 > 0) || math.IsInf(c.UnitMPS2, 0) {
-		return refuse(0, name, "a sensitivity of %g is no scale", s.Value)
+		return refuse(0, name, "a sensitivity of %g is no scale", s.Value.Value)
 	}
-	c.counts, c.Processing, c.turned = true, ProcessingMeanRemoved, s.Value < 0
+	c.counts, c.Processing, c.turned = true, ProcessingMeanRemoved, s.Value.Value < 0
 	if c.turned {
 		c.warn("the sensitivity is negative: the samples are turned")
 	}
@@ -117,7 +117,7 @@ const (
 
 // checkEpoch compares what the epoch says twice, and what records say too.
 func (c *mseedChannel) checkEpoch(e *fdsnxml.Channel) {
-	s := e.Sensitivity.Value
+	s := e.Sensitivity.Value.Value
 	if e.StageGain != 0 && math.Abs(e.StageGain-s) > gainAgreement*math.Abs(s) {
 		c.warn("the stages' gains make %.6g, the sensitivity is %.6g", e.StageGain, s)
 	}
@@ -130,8 +130,10 @@ func (c *mseedChannel) checkEpoch(e *fdsnxml.Channel) {
 func (c *mseedChannel) place(e *fdsnxml.Channel) {
 	s := &c.Station
 	s.Name = e.SiteName
-	s.Latitude, s.Longitude = Known(e.Latitude), Known(e.Longitude)
-	s.ElevationM = Known(e.ElevationM + e.DepthM)
+	s.Latitude, s.Longitude = Number(e.Latitude), Number(e.Longitude)
+	if e.ElevationM.Known {
+		s.ElevationM = Known(e.ElevationM.Value + e.DepthM)
+	}
 	if e.DepthM > boreholeDepthM {
 		c.Siting = SitingBorehole
 	}
@@ -158,15 +160,15 @@ func (c *mseedChannel) orient(e *fdsnxml.Channel) {
 	if e == nil {
 		return
 	}
-	if dip := e.DipDeg; dip != nil {
-		c.byDip(*dip)
+	if dip := e.DipDeg; dip.Known {
+		c.byDip(dip.Value)
 	}
-	if e.AzimuthDeg == nil || c.Orientation.Axis == AxisVertical {
+	if !e.AzimuthDeg.Known || c.Orientation.Axis == AxisVertical {
 		return
 	}
-	c.Orientation.Axis, c.Orientation.AzimuthDeg = AxisHorizontal, Known(*e.AzimuthDeg)
-	if a := byLetter.AzimuthDeg; a.Known && math.Abs(math.Remainder(*e.AzimuthDeg-a.Value, 360)) > axisTolerance {
-		c.warn("a channel %s with an azimuth of %g°: the azimuth taken", letter, *e.AzimuthDeg)
+	c.Orientation.Axis, c.Orientation.AzimuthDeg = AxisHorizontal, Number(e.AzimuthDeg)
+	if a := byLetter.AzimuthDeg; a.Known && math.Abs(math.Remainder(e.AzimuthDeg.Value-a.Value, 360)) > axisTolerance {
+		c.warn("a channel %s with an azimuth of %g°: the azimuth taken", letter, e.AzimuthDeg.Value)
 	}
 }
 

@@ -18,7 +18,7 @@ import (
 // mseedHints hold the metadata of the fixtures.
 func mseedHints(t testing.TB) Hints {
 	t.Helper()
-	m, err := ReadMetadata([]string{recordsDir("miniseed")})
+	m, err := ReadMetadata(t.Context(), []string{recordsDir("miniseed")})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -37,7 +37,7 @@ func stationHints(t testing.TB, replace ...string) Hints {
 	}
 	path := filepath.Join(t.TempDir(), "station.xml")
 	writeFile(t, path, text)
-	m, err := ReadMetadata([]string{path})
+	m, err := ReadMetadata(t.Context(), []string{path})
 	if err != nil {
 		t.Fatal(err)
 	}

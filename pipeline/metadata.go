@@ -37,8 +37,8 @@ func (s *source) readMetadata(ctx context.Context, m *ingest.Metadata) {
 			continue
 		}
 		if ingest.MayBeMetadata(baseOf(f.Path)) {
-			used, err := m.AddFile(f.Path)
-			s.decide(f, used, err)
+			used, err := m.AddFile(ctx, f.Path)
+			s.decide(ctx, f, used, err)
 		} else if a := openArchive(f); a != nil {
 			s.readMembers(ctx, a, m, &left)
 			a.Close()
@@ -60,17 +60,18 @@ func (s *source) readMembers(ctx context.Context, a *openedArchive, m *ingest.Me
 		}
 		f := a.found.Member(member.Name)
 		if *left -= len(member.Data); *left < 0 {
-			s.decide(f, "", fmt.Errorf("more than %d bytes of XML documents in archives: unpack them", packedDocuments))
+			s.decide(ctx, f, "", fmt.Errorf("more than %d bytes of XML documents in archives: unpack them", packedDocuments))
 			continue
 		}
-		used, err := m.Add(f.Path, member.Data)
-		s.decide(f, used, err)
+		used, err := m.Add(ctx, f.Path, member.Data)
+		s.decide(ctx, f, used, err)
 	}
 }
 
-// decide notes what became of a document, if the file was one.
-func (s *source) decide(f ingest.Found, used string, err error) {
-	if used != "" || err != nil {
+// decide notes what became of a document, if the file was one and nobody stopped
+// the run, of which the error is no fault of the file's.
+func (s *source) decide(ctx context.Context, f ingest.Found, used string, err error) {
+	if ctx.Err() == nil && (used != "" || err != nil) {
 		s.decided[absolute(f.Path)] = decided{used, err}
 	}
 }

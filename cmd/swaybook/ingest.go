@@ -89,7 +89,7 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	if o.pipeline.Hints, err = ingestHints(c); err != nil {
 		return o, err
 	}
-	if o.pipeline.Hints.Metadata, err = ingest.ReadMetadata(c.StringSlice("metadata")); err != nil {
+	if o.pipeline.Hints.Metadata, err = ingest.ReadMetadata(c.Context, c.StringSlice("metadata")); err != nil {
 		return o, err
 	}
 	if o.pipeline.Hints.Layouts, err = readLayouts(c.StringSlice("layout")); err != nil {
@@ -211,6 +211,9 @@ type ingestReport struct {
 	Unfit []reasonCount `json:"not_rotated_by_reason"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
+	// Metadata lists what of StationXML and QuakeML was not taken, or is doubtful.
+	Metadata        []fileNote `json:"metadata_notes"`
+	MetadataOmitted int        `json:"metadata_notes_omitted"`
 
 	skipped bool // rotation, since that was asked for
 }
@@ -259,6 +262,11 @@ func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) i
 	for _, cause := range slices.Sorted(maps.Keys(m.causes)) {
 		r.ByCause = append(r.ByCause, causeCount{cause, m.causes[cause]})
 	}
+	metadata := notes{files: []fileNote{}}
+	for _, n := range o.pipeline.Hints.Metadata.Notes() {
+		metadata.add(fileNote{n.Path, n.Line, n.Text})
+	}
+	r.Metadata, r.MetadataOmitted = metadata.files, metadata.omitted
 	slices.SortStableFunc(r.ByCause, func(a, b causeCount) int { return b.Count - a.Count })
 	if c := o.pipeline.Catalogue; c != nil {
 		for _, column := range c.UnknownColumns {
@@ -309,6 +317,7 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 		}
 		p.printf("  %s (%d times, first in %s)\n", w.Text, w.Count, w.First)
 	}
+	p.notes("Metadata that were not taken, or are doubtful:", r.Metadata, r.MetadataOmitted, "--json lists them")
 	for _, note := range r.Catalogue {
 		p.printf("Catalogue: %s\n", note)
 	}

@@ -2,6 +2,7 @@ package fdsnxml
 
 import (
 	"bytes"
+	"context"
 	"encoding/xml"
 	"errors"
 	"fmt"
@@ -73,19 +74,42 @@ func (e *Error) Error() string { return fmt.Sprintf("line %d: %v", e.Line, e.Err
 // Unwrap returns the cause.
 func (e *Error) Unwrap() error { return e.Err }
 
+// Note is a remark on an element: that it was left out, or what of it was not
+// taken, and why. Line is that of its start tag.
+type Note struct {
+	Line int
+	Text string
+}
+
+// leftOut is the remark on an element that is not used.
+func leftOut(line int, name string, err error) Note {
+	return Note{line, fmt.Sprintf("%.80s: %v: left out", name, err)}
+}
+
 // source hands on the tokens of a document: without comments and instructions,
 // without elements of other namespaces, and names without their own.
 type source struct {
 	decoder    *xml.Decoder
 	namespaces []string // beginnings of those that are read
 	depth      int
+	tokens     int
+	stopped    func() error
 }
+
+// tokensBetweenLooks is after how many tokens, some 100 µs, the source looks
+// whether somebody stopped the run.
+const tokensBetweenLooks = 256
 
 var errDocumentType = errors.New("the document declares a type or entities, which is refused")
 
 // Token implements xml.TokenReader.
 func (s *source) Token() (xml.Token, error) {
 	for {
+		if s.tokens++; s.tokens%tokensBetweenLooks == 0 {
+			if err := s.stopped(); err != nil {
+				return nil, err
+			}
+		}
 		token, err := s.decoder.Token()
 		if err != nil {
 			return nil, err
@@ -143,11 +167,11 @@ type document struct {
 }
 
 // open reads up to the root element, which must have the name.
-func open(data []byte, root string, namespaces ...string) (*document, error) {
+func open(ctx context.Context, data []byte, root string, namespaces ...string) (*document, error) {
 	if len(data) > MaxSize {
 		return nil, fmt.Errorf("document of %d bytes is larger than the limit of %d", len(data), MaxSize)
 	}
-	s := &source{decoder: xml.NewDecoder(bytes.NewReader(data)), namespaces: namespaces}
+	s := &source{decoder: xml.NewDecoder(bytes.NewReader(data)), namespaces: namespaces, stopped: ctx.Err}
 	d := &document{source: s, reader: xml.NewTokenDecoder(s)}
 	for {
 		token, err := d.reader.Token()
@@ -171,7 +195,7 @@ func (d *document) fault(err error) error {
 	if e, ok := errors.AsType[*Error](err); ok {
 		return e
 	}
-	line, _ := d.source.decoder.InputPos()
+	line := d.line()
 	if e, ok := errors.AsType[*xml.SyntaxError](err); ok {
 		return &Error{Line: line, Err: errors.New(e.Msg)}
 	}
@@ -200,6 +224,12 @@ func (d *document) children(do func(xml.StartElement) error) error {
 	}
 }
 
+// line is the line that has been reached.
+func (d *document) line() int {
+	line, _ := d.source.decoder.InputPos()
+	return line
+}
+
 // close reads what follows the root element.
 func (d *document) close() error {
 	for {
@@ -212,11 +242,18 @@ func (d *document) close() error {
 	}
 }
 
+// Number is a quantity that a document may or may not state.
+type Number struct {
+	Value float64
+	Known bool
+}
+
 // number is a decimal in an element. It is unknown where the element is missing
-// or empty.
+// or empty; bad says why its text is none, so that the element around it is read
+// to its end.
 type number struct {
-	value float64
-	known bool
+	Number
+	bad error
 }
 
 // UnmarshalXML reads the element's text.
@@ -225,33 +262,58 @@ func (n *number) UnmarshalXML(d *xml.Decoder, start xml.StartElement) error {
 	if err := d.DecodeElement(&text, &start); err != nil {
 		return err
 	}
+	*n = number{}
 	text = strings.TrimSpace(text)
 	if text == "" {
 		return nil
 	}
 	v, err := strconv.ParseFloat(text, 64)
 	if err != nil || math.IsNaN(v) || math.IsInf(v, 0) {
-		return fmt.Errorf("%s: expected a number, found %.40q", start.Name.Local, text)
+		n.bad = fmt.Errorf("%s: expected a number, found %.40q", start.Name.Local, text)
+		return nil
 	}
-	n.value, n.known = v, true
+	n.Number = Number{v, true}
 	return nil
 }
 
-// pointer returns the number, nil where it is unknown.
-func (n number) pointer() *float64 {
-	if !n.known {
-		return nil
+// firstBad returns the first error of numbers, nil for none.
+func firstBad(numbers ...number) error {
+	for _, n := range numbers {
+		if n.bad != nil {
+			return n.bad
+		}
 	}
-	return &n.value
+	return nil
 }
 
 // within refuses a number outside a range.
-func (n number) within(name string, low, high float64) error {
-	if n.known && (n.value < low || n.value > high) {
-		return fmt.Errorf("%s %g is outside %g to %g", name, n.value, low, high)
+func (n Number) within(name string, low, high float64) error {
+	if n.Known && (n.Value < low || n.Value > high) {
+		return fmt.Errorf("%s %g is outside %g to %g", name, n.Value, low, high)
 	}
 	return nil
 }
+
+// position returns a latitude and a longitude that can be: two zeros are how
+// software leaves them out, and longitudes may be counted all the way round. Else
+// both are unknown, and the error says why.
+func position(latitude, longitude Number) (lat, lon Number, err error) {
+	if longitude.Value > 180 && longitude.Value <= 360 {
+		longitude.Value -= 360
+	}
+	if latitude.Value == 0 && longitude.Value == 0 {
+		return lat, lon, errors.New("latitude and longitude are 0")
+	}
+	if err := latitude.within("latitude", -90, 90); err != nil {
+		return lat, lon, err
+	}
+	if err := longitude.within("longitude", -180, 180); err != nil {
+		return lat, lon, err
+	}
+	return latitude, longitude, nil
+}
+
+var errNoPosition = errors.New("no latitude or no longitude")
 
 // timeLayouts are the forms of ISO 8601 that documents use. Fractions of seconds
 // are read with any of them.

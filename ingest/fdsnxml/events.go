@@ -2,6 +2,7 @@ package fdsnxml
 
 import (
 	"cmp"
+	"context"
 	"encoding/xml"
 	"errors"
 	"fmt"
@@ -12,21 +13,22 @@ import (
 
 // Event is one event with its preferred origin and magnitude.
 type Event struct {
-	PublicID            string
+	PublicID            string // "" where not stated
 	Code                string // the catalogue's own code, "" where not stated
-	Type                string // "earthquake", "quarry blast" …, "" where not stated
 	Name                string // the description: the place in words
 	Origin              time.Time
-	Latitude, Longitude float64  // degrees
-	DepthM              *float64 // nil where not stated
-	Magnitude           *float64 // nil where not stated
-	MagnitudeType       string   // Mw, ML …
+	Latitude, Longitude float64 // degrees
+	DepthM              Number
+	Magnitude           Number
+	MagnitudeType       string // Mw, ML …
+	// Line is that of the event's start tag.
+	Line int
 	// Warnings say what had to be chosen.
 	Warnings []string
 }
 
-// The depths of an origin, in m. Beyond them the unit is mistaken.
-const minDepthM, maxDepthM = -10e3, 800e3
+// noEvents are the types of events of which there was none, or nowhere.
+var noEvents = []string{"not existing", "not locatable"}
 
 // The elements of QuakeML that are read.
 type (
@@ -60,14 +62,14 @@ type (
 	}
 )
 
-// ReadEvents reads a QuakeML document. An error is an *Error with the line, or
-// says that the document is too large.
-func ReadEvents(data []byte) ([]Event, error) {
-	d, err := open(data, eventRoot, eventNamespace)
+// ReadEvents reads a QuakeML document. Events that cannot be used are left out,
+// and the notes say why. An error is an *Error with the line, says that the document
+// is too large, or is the context's.
+func ReadEvents(ctx context.Context, data []byte) (events []Event, left []Note, err error) {
+	d, err := open(ctx, data, eventRoot, eventNamespace)
 	if err != nil {
-		return nil, err
+		return nil, nil, err
 	}
-	var events []Event
 	err = d.children(func(e xml.StartElement) error {
 		if e.Name.Local != "eventParameters" {
 			return d.reader.Skip()
@@ -76,23 +78,30 @@ func ReadEvents(data []byte) ([]Event, error) {
 			if e.Name.Local != "event" {
 				return d.reader.Skip()
 			}
-			var raw xmlEvent
+			raw, line := xmlEvent{}, d.line()
 			if err := d.reader.DecodeElement(&raw, &e); err != nil {
 				return err
 			}
-			event, err := raw.event()
+			event, err := raw.event(line)
+			if err != nil {
+				left = append(left, leftOut(line, "event "+event.PublicID, err))
+				return nil
+			}
 			events = append(events, event)
-			return err
+			return nil
 		})
 	})
 	if err != nil {
-		return nil, err
+		return nil, nil, err
 	}
-	return events, d.close()
+	return events, left, d.close()
 }
 
-func (raw *xmlEvent) event() (e Event, err error) {
-	e = Event{PublicID: strings.TrimSpace(raw.PublicID), Code: strings.TrimSpace(raw.Code), Type: strings.TrimSpace(raw.Type), Name: raw.name()}
+func (raw *xmlEvent) event(line int) (e Event, err error) {
+	e = Event{PublicID: strings.TrimSpace(raw.PublicID), Code: strings.TrimSpace(raw.Code), Name: raw.name(), Line: line}
+	if kind := strings.TrimSpace(raw.Type); slices.Contains(noEvents, kind) {
+		return e, fmt.Errorf("its type is %q", kind)
+	}
 	o, err := raw.origin(&e)
 	if err == nil {
 		err = o.describe(&e)
@@ -100,10 +109,7 @@ func (raw *xmlEvent) event() (e Event, err error) {
 	if err == nil {
 		err = raw.magnitude(&e)
 	}
-	if err != nil {
-		return e, fmt.Errorf("event %.80s: %w", e.PublicID, err)
-	}
-	return e, nil
+	return e, err
 }
 
 // name is the description that speaks of the place or the earthquake's name,
@@ -157,19 +163,25 @@ func (o *xmlOrigin) describe(e *Event) (err error) {
 	if e.Origin.IsZero() {
 		return errors.New("its origin has no time")
 	}
-	if err := position(o.Latitude, o.Longitude); err != nil {
+	if err := firstBad(o.Latitude, o.Longitude, o.Depth); err != nil {
 		return err
 	}
-	if err := o.Depth.within("depth in m", minDepthM, maxDepthM); err != nil {
-		return err
+	if !o.Latitude.Known || !o.Longitude.Known {
+		return errNoPosition
 	}
-	e.Latitude, e.Longitude, e.DepthM = o.Latitude.value, o.Longitude.value, o.Depth.pointer()
-	return nil
+	latitude, longitude, err := position(o.Latitude.Number, o.Longitude.Number)
+	e.Latitude, e.Longitude, e.DepthM = latitude.Value, longitude.Value, o.Depth.Number
+	return err
 }
 
 // magnitude takes the preferred one, else a moment magnitude, else the first.
 func (raw *xmlEvent) magnitude(e *Event) error {
-	known := slices.DeleteFunc(slices.Clone(raw.Magnitudes), func(m xmlMagnitude) bool { return !m.Value.known })
+	for _, m := range raw.Magnitudes {
+		if m.Value.bad != nil {
+			return m.Value.bad
+		}
+	}
+	known := slices.DeleteFunc(slices.Clone(raw.Magnitudes), func(m xmlMagnitude) bool { return !m.Value.Known })
 	if len(known) == 0 {
 		return nil
 	}
@@ -180,6 +192,6 @@ func (raw *xmlEvent) magnitude(e *Event) error {
 		at = slices.IndexFunc(known, func(m xmlMagnitude) bool { return strings.HasPrefix(strings.ToLower(strings.TrimSpace(m.Type)), "mw") })
 	}
 	m := known[max(0, at)]
-	e.Magnitude, e.MagnitudeType = m.Value.pointer(), strings.TrimSpace(m.Type)
-	return m.Value.within("magnitude", -3, 11)
+	e.Magnitude, e.MagnitudeType = m.Value.Number, strings.TrimSpace(m.Type)
+	return nil
 }

@@ -2,7 +2,10 @@ package fdsnxml
 
 import (
 	"bytes"
+	"context"
 	"errors"
+	"fmt"
+	"math"
 	"os"
 	"path/filepath"
 	"reflect"
@@ -24,55 +27,58 @@ func day(year, month, day, hour int) time.Time {
 	return time.Date(year, time.Month(month), day, hour, 0, 0, 0, time.UTC)
 }
 
-func known(v float64) *float64 { return &v }
+func known(v float64) Number { return Number{v, true} }
 
 func TestReadStations(t *testing.T) {
-	v, err := ReadStations(read(t, "station.xml"))
+	v, err := ReadStations(t.Context(), read(t, "station.xml"))
 	if err != nil {
 		t.Fatal(err)
 	}
-	stations := []Station{{"XX", "CULM", "Culmination Reef", 30.5, 149.75, 12, day(2035, 1, 1, 0), time.Time{}}}
+	stations := []Station{{"XX", "CULM", "Culmination Reef", known(30.5), known(149.75), known(12), day(2035, 1, 1, 0), time.Time{}}}
 	if !reflect.DeepEqual(v.Stations, stations) {
 		t.Errorf("stations %+v, want %+v", v.Stations, stations)
 	}
-	base := Channel{Network: "XX", Station: "CULM", Location: "00", Code: "HNE", SiteName: "Culmination Reef", Latitude: 30.5, Longitude: 149.75, ElevationM: 12}
+	base := Channel{Network: "XX", Station: "CULM", Location: "00", Code: "HNE", SiteName: "Culmination Reef", Latitude: known(30.5), Longitude: known(149.75), ElevationM: known(12)}
 	first, second, third := base, base, base
 	first.Start, first.End = day(2035, 1, 1, 0), day(2038, 6, 30, 12)
 	first.AzimuthDeg, first.DipDeg, first.RateHz = known(90), known(0), 100
-	first.Sensitivity = &Sensitivity{213000, 1, "m/s**2", "counts"}
+	first.Sensitivity = Sensitivity{known(213000), "m/s**2", "counts"}
 	second.Start = first.End
-	second.Latitude, second.Longitude, second.ElevationM, second.DepthM = 30.5001, 149.7501, 10, 2
+	second.Latitude, second.Longitude, second.ElevationM, second.DepthM = known(30.5001), known(149.7501), known(10), 2
 	second.AzimuthDeg, second.DipDeg, second.RateHz = known(93), known(-1.5), 200
-	second.Sensitivity = &Sensitivity{-428000.5, 1, "M/S**2", "counts"}
+	second.Sensitivity = Sensitivity{known(-428000.5), "M/S**2", "counts"}
 	second.StageGain = -1.02
 	second.StageGain *= 419608
 	third.Location, third.Code, third.Polynomial = "", "HNZ", true
+	if len(v.Notes) > 0 {
+		t.Errorf("notes %v", v.Notes)
+	}
 	if want := []Channel{first, second, third}; !reflect.DeepEqual(v.Channels, want) {
 		t.Errorf("channels %+v, want %+v", v.Channels, want)
 	}
 }
 
 func TestReadEvents(t *testing.T) {
-	events, err := ReadEvents(read(t, "events.xml"))
-	if err != nil {
-		t.Fatal(err)
+	events, left, err := ReadEvents(t.Context(), read(t, "events.xml"))
+	if err != nil || len(left) > 0 {
+		t.Fatal(left, err)
 	}
 	want := []Event{
 		{
-			PublicID: "smi:example.org/event/sb2041eswk", Code: "2041eswk", Type: "earthquake", Name: "Culmination Reef",
+			PublicID: "smi:example.org/event/sb2041eswk", Code: "2041eswk", Name: "Culmination Reef",
 			Origin: day(2041, 3, 4, 8).Add(12*time.Minute + 250*time.Millisecond), Latitude: 30.125, Longitude: 150.25,
-			DepthM: known(25000), Magnitude: known(5.7), MagnitudeType: "Mw",
+			DepthM: known(25000), Magnitude: known(5.7), MagnitudeType: "Mw", Line: 5,
 		},
 		{
 			PublicID: "smi:example.org/event/second", Origin: day(2041, 3, 4, 22).Add(time.Second), Latitude: -3.1, Longitude: 10.1,
-			Magnitude: known(4.3), MagnitudeType: "Mwr",
+			Magnitude: known(4.3), MagnitudeType: "Mwr", Line: 22,
 			Warnings: []string{
 				"of 2 origins none is preferred: the newest taken, manual ones first",
 				"of 2 magnitudes none is preferred: a moment magnitude taken, else the first",
 			},
 		},
 		{
-			PublicID: "smi:example.org/event/third", Type: "quarry blast", Origin: day(2041, 3, 7, 10), Latitude: 1, Longitude: 2,
+			PublicID: "smi:example.org/event/third", Origin: day(2041, 3, 7, 10), Latitude: 1, Longitude: 2, Line: 30,
 			Warnings: []string{"the preferred origin is not in the document"},
 		},
 	}
@@ -80,7 +86,7 @@ func TestReadEvents(t *testing.T) {
 		t.Errorf("events %+v, want %+v", events, want)
 	}
 	realtime := bytes.ReplaceAll(read(t, "events.xml"), []byte("xmlns/bed/1.2"), []byte("xmlns/bed-rt/1.2"))
-	if again, err := ReadEvents(realtime); err != nil || !reflect.DeepEqual(again, want) {
+	if again, _, err := ReadEvents(t.Context(), realtime); err != nil || !reflect.DeepEqual(again, want) {
 		t.Errorf("in the namespace bed-rt: %d events, %v", len(again), err)
 	}
 }
@@ -100,7 +106,7 @@ func TestKind(t *testing.T) {
 }
 
 func TestLookup(t *testing.T) {
-	v, err := ReadStations(read(t, "station.xml"))
+	v, err := ReadStations(t.Context(), read(t, "station.xml"))
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -137,13 +143,13 @@ func TestLookup(t *testing.T) {
 }
 
 func TestMergeAndSite(t *testing.T) {
-	v, _ := ReadStations(read(t, "station.xml"))
-	again, _ := ReadStations(read(t, "station.xml"))
+	v, _ := ReadStations(t.Context(), read(t, "station.xml"))
+	again, _ := ReadStations(t.Context(), read(t, "station.xml"))
 	v.Merge(again)
 	if len(v.Channels) != 3 || len(v.Stations) != 1 {
 		t.Errorf("%d channels and %d stations after the same document twice, want 3 and 1", len(v.Channels), len(v.Stations))
 	}
-	if s, ok := v.Site("XX", "CULM", time.Time{}); !ok || s.Latitude != 30.5 {
+	if s, ok := v.Site("XX", "CULM", time.Time{}); !ok || s.Latitude != known(30.5) {
 		t.Errorf("Site = %+v, %v", s, ok)
 	}
 	for _, miss := range []struct {
@@ -154,55 +160,127 @@ func TestMergeAndSite(t *testing.T) {
 			t.Errorf("Site(%v) = %+v, want none", miss, s)
 		}
 	}
-	moved, _ := ReadStations(bytes.Replace(read(t, "station.xml"), []byte(">30.5<"), []byte(">31.5<"), 1))
+	moved, _ := ReadStations(t.Context(), bytes.Replace(read(t, "station.xml"), []byte(">30.5<"), []byte(">31.5<"), 1))
 	v.Merge(moved)
 	if s, ok := v.Site("XX", "CULM", time.Time{}); ok || len(v.Stations) != 2 {
 		t.Errorf("of two places Site gives %+v", s)
 	}
 }
 
-// TestRefusals compares whole messages.
-func TestRefusals(t *testing.T) {
-	stations, events := string(read(t, "station.xml")), string(read(t, "events.xml"))
-	change := func(text, old, new string) string {
-		if !strings.Contains(text, old) {
-			t.Fatalf("no %q to damage", old)
+// damaged returns a document in which old is replaced.
+func damaged(t *testing.T, name string, replace ...string) []byte {
+	t.Helper()
+	text := string(read(t, name))
+	for i := 0; i < len(replace); i += 2 {
+		if !strings.Contains(text, replace[i]) {
+			t.Fatalf("no %q to damage", replace[i])
 		}
-		return strings.Replace(text, old, new, 1)
+		text = strings.Replace(text, replace[i], replace[i+1], 1)
 	}
-	stationsOf := func(text string) error { _, err := ReadStations([]byte(text)); return err }
-	eventsOf := func(text string) error { _, err := ReadEvents([]byte(text)); return err }
+	return []byte(text)
+}
+
+// TestRefusals compares whole messages of documents that are refused.
+func TestRefusals(t *testing.T) {
+	stations, events := read(t, "station.xml"), read(t, "events.xml")
+	change := func(replace ...string) []byte { return damaged(t, "station.xml", replace...) }
 	cases := []struct {
-		name, text, want string
-		read             func(string) error
+		name string
+		text []byte
+		want string
 	}{
-		{"document type", change(stations, "<!--", `<!DOCTYPE a [<!ENTITY b "c">]><!--`), "line 2: the document declares a type or entities, which is refused", stationsOf},
-		{"document type inside", change(stations, "<Site>", `<!DOCTYPE a><Site>`), "line 12: the document declares a type or entities, which is refused", stationsOf},
-		{"entity", change(stations, "Culmination Reef", "&reef;"), "line 12: invalid character entity &reef;", stationsOf},
-		{"truncated", stations[:1500], "line 25: unexpected EOF", stationsOf},
-		{"empty", "", "line 1: no root element FDSNStationXML of the namespace http://www.fdsn.org/xml/station/1", stationsOf},
-		{"other root", events, "line 37: no root element FDSNStationXML of the namespace http://www.fdsn.org/xml/station/1", stationsOf},
-		{"number", change(stations, "213000", "many"), `line 17: Value: expected a number, found "many"`, stationsOf},
-		{"not finite", change(stations, "213000", "NaN"), `line 17: Value: expected a number, found "NaN"`, stationsOf},
-		{"latitude", change(stations, ">30.5001<", ">300.5<"), "line 35: channel XX.CULM.00.HNE: latitude 300.5 is outside -90 to 90", stationsOf},
-		{"no longitude", change(stations, "<Longitude>149.75</Longitude>\n", "\n"), "line 40: station XX.CULM: no latitude or no longitude", stationsOf},
-		{"epoch", change(stations, "2038-06-30T12:00:00", "2034-06-30T12:00:00"), "line 20: channel XX.CULM.00.HNE: endDate 2034-06-30T12:00:00 is before startDate 2035-01-01T00:00:00", stationsOf},
-		{"date", change(stations, "2038-06-30T12:00:00", "June"), `line 20: channel XX.CULM.00.HNE: endDate: expected a time, found "June"`, stationsOf},
-		{"dip", change(stations, ">-1.5<", ">-91.5<"), "line 35: channel XX.CULM.00.HNE: dip -91.5 is outside -90 to 90", stationsOf},
-		{"deep", change(stations, "<Site>", strings.Repeat("<Site>", 60)), "line 12: elements are nested deeper than 40", stationsOf},
-		{"junk behind", stations + "<", "line 43: unexpected EOF", stationsOf},
-		{"depth", change(events, "25000", "900000"), "line 21: event smi:example.org/event/sb2041eswk: depth in m 900000 is outside -10000 to 800000", eventsOf},
-		{"longitude", change(events, "150.25", "350.25"), "line 21: event smi:example.org/event/sb2041eswk: longitude 350.25 is outside -180 to 180", eventsOf},
-		{"no origin", change(change(events, `<origin publicID="c">`, `<focus publicID="c">`), "</origin>\n    </event>\n  </eventP", "</focus>\n    </event>\n  </eventP"), "line 34: event smi:example.org/event/third: no origin", eventsOf},
-		{"no time", change(events, "2041-03-07T10:00:00Z", ""), "line 34: event smi:example.org/event/third: its origin has no time", eventsOf},
-		{"time", change(events, "2041-03-07T10:00:00Z", "noon"), `line 34: event smi:example.org/event/third: expected a time, found "noon"`, eventsOf},
-		{"magnitude", change(events, ">4.3<", ">43<"), "line 29: event smi:example.org/event/second: magnitude 43 is outside -3 to 11", eventsOf},
+		{"document type", change("<!--", `<!DOCTYPE a [<!ENTITY b "c">]><!--`), "line 2: the document declares a type or entities, which is refused"},
+		{"document type inside", change("<Site>", `<!DOCTYPE a><Site>`), "line 12: the document declares a type or entities, which is refused"},
+		{"entity", change("Culmination Reef", "&reef;"), "line 12: invalid character entity &reef;"},
+		{"truncated", stations[:1500], "line 25: unexpected EOF"},
+		{"empty", nil, "line 1: no root element FDSNStationXML of the namespace http://www.fdsn.org/xml/station/1"},
+		{"other root", events, "line 37: no root element FDSNStationXML of the namespace http://www.fdsn.org/xml/station/1"},
+		{"deep", change("<Site>", strings.Repeat("<Site>", 60)), "line 12: elements are nested deeper than 40"},
+		{"junk behind", append(bytes.Clone(stations), '<'), "line 43: unexpected EOF"},
 	}
 	for _, k := range cases {
-		err := k.read(k.text)
+		_, err := ReadStations(t.Context(), k.text)
 		if e := new(Error); err == nil || err.Error() != k.want || !errors.As(err, &e) {
 			t.Errorf("%s: error %v, want %q", k.name, err, k.want)
 		}
+	}
+}
+
+// TestLeftOut damages one element and finds the others, and what was noted.
+func TestLeftOut(t *testing.T) {
+	for _, k := range []struct {
+		name     string
+		replace  []string
+		want     string
+		stations int
+		channels int
+	}{
+		{"number", []string{"213000", "many"}, `13 channel XX.CULM.00.HNE: Value: expected a number, found "many": left out`, 1, 2},
+		{"not finite", []string{"213000", "NaN"}, `13 channel XX.CULM.00.HNE: Value: expected a number, found "NaN": left out`, 1, 2},
+		{"gain", []string{"419608", "x"}, `21 channel XX.CULM.00.HNE: Value: expected a number, found "x": left out`, 1, 2},
+		{"epoch", []string{"2038-06-30T12:00:00", "2034-06-30T12:00:00"}, "13 channel XX.CULM.00.HNE: endDate 2034-06-30T12:00:00 is before startDate 2035-01-01T00:00:00: left out", 1, 2},
+		{"date", []string{"2038-06-30T12:00:00", "June"}, `13 channel XX.CULM.00.HNE: endDate: expected a time, found "June": left out`, 1, 2},
+		{"dip", []string{">-1.5<", ">-91.5<"}, "21 channel XX.CULM.00.HNE: dip -91.5 is outside -90 to 90: left out", 1, 2},
+		{"channel without coordinates", []string{"<Longitude>149.7501</Longitude><Latitude>30.5001</Latitude>", ""}, "21 channel XX.CULM.00.HNE: no latitude or no longitude: left out", 1, 2},
+		{"station without longitude", []string{"<Longitude>149.75</Longitude>\n", "\n"}, "7 station XX.CULM: no latitude or no longitude: left out", 0, 3},
+		{"elevation of a station", []string{"<Elevation>12<", "<Elevation>high<"}, `7 station XX.CULM: Elevation: expected a number, found "high": left out`, 0, 3},
+		{"latitude", []string{">30.5001<", ">300.5<"}, "21 channel XX.CULM.00.HNE: latitude 300.5 is outside -90 to 90: position taken as unknown", 1, 3},
+		{"zeros", []string{">30.5<", ">0<", ">149.75<", ">0.0<"}, "7 station XX.CULM: latitude and longitude are 0: position taken as unknown", 1, 3},
+		{"all the way round", []string{">149.75<", ">200.25<"}, "", 1, 3},
+	} {
+		v, err := ReadStations(t.Context(), damaged(t, "station.xml", k.replace...))
+		if err != nil || len(v.Stations) != k.stations || len(v.Channels) != k.channels || listed(v.Notes) != k.want {
+			t.Errorf("%s: %+v, %v; want %q, %d stations and %d channels", k.name, v, err, k.want, k.stations, k.channels)
+			continue
+		}
+		for _, s := range v.Stations {
+			if want := map[string]Number{"zeros": {}, "all the way round": known(-159.75)}[k.name]; s.Longitude != want && s.Longitude != known(149.75) {
+				t.Errorf("%s: longitude %v", k.name, s.Longitude)
+			}
+		}
+	}
+	const second, third = "22 event smi:example.org/event/second: ", "30 event smi:example.org/event/third: "
+	for _, k := range []struct {
+		name    string
+		replace []string
+		want    string
+	}{
+		{"no origin", []string{`<origin publicID="c">`, `<focus publicID="c">`, "</origin>\n    </event>\n  </eventP", "</focus>\n    </event>\n  </eventP"}, third + "no origin: left out"},
+		{"no time", []string{"2041-03-07T10:00:00Z", ""}, third + "its origin has no time: left out"},
+		{"time", []string{"2041-03-07T10:00:00Z", "noon"}, third + `expected a time, found "noon": left out`},
+		{"no latitude", []string{"<latitude><value>1</value></latitude>", ""}, third + "no latitude or no longitude: left out"},
+		{"zeros", []string{"<value>1</value>", "<value>0</value>", "<value>2</value>", "<value>0</value>"}, third + "latitude and longitude are 0: left out"},
+		{"longitude", []string{"<value>2</value>", "<value>362</value>"}, third + "longitude 362 is outside -180 to 180: left out"},
+		{"magnitude", []string{">4.3<", ">big<"}, second + `value: expected a number, found "big": left out`},
+		{"none", []string{"quarry blast", "not existing"}, third + `its type is "not existing": left out`},
+		{"nowhere", []string{"quarry blast", "not locatable"}, third + `its type is "not locatable": left out`},
+	} {
+		events, left, err := ReadEvents(t.Context(), damaged(t, "events.xml", k.replace...))
+		if err != nil || len(events) != 2 || listed(left) != k.want {
+			t.Errorf("%s: %d events, %v, %v; want 2, %q", k.name, len(events), left, err, k.want)
+		}
+	}
+}
+
+func listed(notes []Note) string {
+	var texts []string
+	for _, n := range notes {
+		texts = append(texts, fmt.Sprintf("%d %s", n.Line, n.Text))
+	}
+	return strings.Join(texts, "\n")
+}
+
+// A run that is stopped ends within a document.
+func TestStopped(t *testing.T) {
+	ctx, stop := context.WithCancel(t.Context())
+	stop()
+	stations := manyChannels(1000)
+	events := manyEvents(1000)
+	if _, err := ReadStations(ctx, stations); !errors.Is(err, context.Canceled) {
+		t.Errorf("ReadStations: %v", err)
+	}
+	if _, _, err := ReadEvents(ctx, events); !errors.Is(err, context.Canceled) {
+		t.Errorf("ReadEvents: %v", err)
 	}
 }
 
@@ -210,7 +288,7 @@ func FuzzReadStations(f *testing.F) {
 	f.Add(read(f, "station.xml"))
 	f.Fuzz(func(t *testing.T, data []byte) {
 		before := bytes.Clone(data)
-		v, err := ReadStations(data)
+		v, err := ReadStations(t.Context(), data)
 		if !bytes.Equal(data, before) {
 			t.Error("ReadStations changed its input")
 		}
@@ -218,12 +296,13 @@ func FuzzReadStations(f *testing.F) {
 			checkError(t, err, data)
 			return
 		}
+		checkNotes(t, v.Notes, data)
 		for _, c := range v.Channels {
-			if !(c.Latitude >= -90 && c.Latitude <= 90 && c.Longitude >= -180 && c.Longitude <= 180) {
-				t.Fatalf("channel at %g, %g", c.Latitude, c.Longitude)
+			if lat, lon := c.Latitude, c.Longitude; !(math.Abs(lat.Value) <= 90 && math.Abs(lon.Value) <= 180) || lat.Known != lon.Known {
+				t.Fatalf("channel at %v, %v", lat, lon)
 			}
-			if a := c.AzimuthDeg; a != nil && !(*a >= 0 && *a < 360) {
-				t.Fatalf("azimuth %g", *a)
+			if a := c.AzimuthDeg.Value; !(a >= 0 && a < 360) {
+				t.Fatalf("azimuth %g", a)
 			}
 			if !c.End.IsZero() && c.End.Before(c.Start) {
 				t.Fatalf("epoch from %v to %v", c.Start, c.End)
@@ -233,7 +312,7 @@ func FuzzReadStations(f *testing.F) {
 			}
 		}
 		size := len(v.Channels)
-		again, _ := ReadStations(data)
+		again, _ := ReadStations(t.Context(), data)
 		if v.Merge(again); len(v.Channels) != size {
 			t.Fatalf("%d channels after merging %d with themselves", len(v.Channels), size)
 		}
@@ -243,7 +322,7 @@ func FuzzReadStations(f *testing.F) {
 func FuzzReadEvents(f *testing.F) {
 	f.Add(read(f, "events.xml"))
 	f.Fuzz(func(t *testing.T, data []byte) {
-		events, err := ReadEvents(data)
+		events, left, err := ReadEvents(t.Context(), data)
 		if err != nil {
 			checkError(t, err, data)
 			return
@@ -252,10 +331,8 @@ func FuzzReadEvents(f *testing.F) {
 			if e.Origin.IsZero() || !(e.Latitude >= -90 && e.Latitude <= 90 && e.Longitude >= -180 && e.Longitude <= 180) {
 				t.Fatalf("event %+v", e)
 			}
-			if d := e.DepthM; d != nil && !(*d >= minDepthM && *d <= maxDepthM) {
-				t.Fatalf("depth %g m", *d)
-			}
 		}
+		checkNotes(t, left, data)
 	})
 }
 
@@ -264,5 +341,14 @@ func checkError(t *testing.T, err error, data []byte) {
 	e := new(Error)
 	if !errors.As(err, &e) || e.Line < 1 || e.Line > 1+bytes.Count(data, []byte("\n")) {
 		t.Fatalf("error of type %T: %v", err, err)
+	}
+}
+
+func checkNotes(t *testing.T, notes []Note, data []byte) {
+	t.Helper()
+	for _, n := range notes {
+		if n.Line < 1 || n.Line > 1+bytes.Count(data, []byte("\n")) || n.Text == "" {
+			t.Fatalf("note %+v", n)
+		}
 	}
 }

@@ -3,9 +3,6 @@ package fdsnxml
 import (
 	"errors"
 	"fmt"
-	"hash/maphash"
-	"reflect"
-	"slices"
 	"strings"
 	"time"
 )
@@ -22,7 +19,7 @@ const maxEpochs = 6
 func (v *Inventory) Lookup(network, station, location_, code string, from, to time.Time) (*Channel, error) {
 	var epochs, fit []*Channel
 	wanted := Channel{Network: network, Station: station, Location: location(location_), Code: code}
-	for _, i := range v.channels.byName[wanted.name()] {
+	for _, i := range v.channels.named[wanted.name()] {
 		c := &v.Channels[i]
 		epochs = append(epochs, c)
 		if covers(c.Start, c.End, from, to) {
@@ -49,7 +46,7 @@ func (v *Inventory) Lookup(network, station, location_, code string, from, to ti
 // time is zero. Where the epochs that fit are at different places, there is none.
 func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool) {
 	wanted := Station{Network: network, Code: code}
-	for _, i := range v.stations.byName[wanted.name()] {
+	for _, i := range v.stations.named[wanted.name()] {
 		other := v.Stations[i]
 		if !at.IsZero() && !covers(other.Start, other.End, at, at) {
 			continue
@@ -73,55 +70,48 @@ func (v *Inventory) Merge(other *Inventory) {
 }
 
 func (v *Inventory) addStation(s Station) {
-	v.Stations = add(&v.stations, v.Stations, s, s.name(), maphash.Comparable(seed, s))
+	if v.stations.add(s, s.name(), len(v.Stations)) {
+		v.Stations = append(v.Stations, s)
+	}
 }
 
 func (v *Inventory) addChannel(c Channel) {
-	v.Channels = add(&v.channels, v.Channels, c, c.name(), c.hash())
+	if v.channels.add(c, c.name(), len(v.Channels)) {
+		v.Channels = append(v.Channels, c)
+	}
 }
 
-// seed is of this process alone, so that no document can be made whose items have
-// one hash.
-var seed = maphash.MakeSeed()
+// name names a station, or a channel of one.
+type name struct{ network, station, location, channel string }
 
-// hash is that of all that is stated.
-func (c Channel) hash() uint64 {
-	key := struct {
-		rest         Channel
-		azimuth, dip float64
-		sensitivity  Sensitivity
-	}{rest: c}
-	key.rest.AzimuthDeg, key.rest.DipDeg, key.rest.Sensitivity = nil, nil, nil
-	if c.AzimuthDeg != nil {
-		key.azimuth = *c.AzimuthDeg
+func (s *Station) name() name { return name{network: s.Network, station: s.Code} }
+func (c *Channel) name() name { return name{c.Network, c.Station, c.Location, c.Code} }
+
+// String is XX.ABC, or XX.ABC.00.HNE.
+func (n name) String() string {
+	if n.location == "" && n.channel == "" {
+		return n.network + "." + n.station
 	}
-	if c.DipDeg != nil {
-		key.dip = *c.DipDeg
-	}
-	if c.Sensitivity != nil {
-		key.sensitivity = *c.Sensitivity
-	}
-	return maphash.Comparable(seed, key)
+	return strings.Join([]string{n.network, n.station, n.location, n.channel}, ".")
 }
 
-// index finds the items of an inventory.
-type index struct {
-	byName map[string][]int
-	byHash map[uint64][]int
+// index finds epochs by name, and tells which are there.
+type index[T comparable] struct {
+	named map[name][]int
+	held  map[T]struct{}
 }
 
-// add appends an item that is not there yet and notes it under its name. One name
-// may have any number of epochs, so equal ones are looked for by their hash.
-func add[T any](x *index, all []T, item T, name string, hash uint64) []T {
-	if slices.ContainsFunc(x.byHash[hash], func(i int) bool { return reflect.DeepEqual(all[i], item) }) {
-		return all
+// add notes an item that is not there yet as the one at a place.
+func (x *index[T]) add(item T, n name, at int) bool {
+	if _, ok := x.held[item]; ok {
+		return false
 	}
-	if x.byName == nil {
-		x.byName, x.byHash = map[string][]int{}, map[uint64][]int{}
+	if x.held == nil {
+		x.named, x.held = map[name][]int{}, map[T]struct{}{}
 	}
-	x.byName[name] = append(x.byName[name], len(all))
-	x.byHash[hash] = append(x.byHash[hash], len(all))
-	return append(all, item)
+	x.held[item] = struct{}{}
+	x.named[n] = append(x.named[n], at)
+	return true
 }
 
 func covers(start, end, from, to time.Time) bool {

@@ -1,6 +1,8 @@
 package fdsnxml
 
 import (
+	"cmp"
+	"context"
 	"encoding/xml"
 	"fmt"
 	"math"
@@ -16,8 +18,8 @@ const openYear = 2500
 type Station struct {
 	Network, Code       string
 	Name                string // of the site
-	Latitude, Longitude float64
-	ElevationM          float64
+	Latitude, Longitude Number // degrees; both or none
+	ElevationM          Number
 	Start, End          time.Time // zero where open
 }
 
@@ -26,13 +28,13 @@ type Channel struct {
 	Network, Station, Location, Code string // a location that is blank or "--" is ""
 	SiteName                         string
 	Start, End                       time.Time // zero where open
-	Latitude, Longitude              float64   // degrees
-	ElevationM                       float64   // of the sensor
-	DepthM                           float64   // of the sensor below the ground
-	AzimuthDeg                       *float64  // clockwise from north, nil where not stated
-	DipDeg                           *float64  // down from the horizontal, nil where not stated
+	Latitude, Longitude              Number    // degrees; both or none
+	ElevationM                       Number    // of the sensor
+	DepthM                           float64   // of the sensor below the ground, 0 where not stated
+	AzimuthDeg                       Number    // clockwise from north
+	DipDeg                           Number    // down from the horizontal
 	RateHz                           float64   // 0 where not stated
-	Sensitivity                      *Sensitivity
+	Sensitivity                      Sensitivity
 	// Polynomial says that the response is a polynomial and has no sensitivity.
 	Polynomial bool
 	// StageGain is the product of the gains of all stages, 0 where not stated.
@@ -40,20 +42,22 @@ type Channel struct {
 }
 
 // Sensitivity is what an instrument makes of its input: Value output units for
-// one input unit, at a frequency.
+// one input unit.
 type Sensitivity struct {
-	Value       float64
-	FrequencyHz float64
-	InputUnit   string
-	OutputUnit  string
+	Value      Number
+	InputUnit  string
+	OutputUnit string
 }
 
 // Inventory is what StationXML documents say.
 type Inventory struct {
 	Stations []Station
 	Channels []Channel
+	// Notes say what of a document that was read was not taken; Merge leaves them.
+	Notes []Note
 
-	stations, channels index
+	stations index[Station]
+	channels index[Channel]
 }
 
 // The elements of StationXML that are read. The order of elements does not
@@ -84,10 +88,9 @@ type (
 	}
 	xmlResponse struct {
 		Sensitivity *struct {
-			Value     number `xml:"Value"`
-			Frequency number `xml:"Frequency"`
-			Input     string `xml:"InputUnits>Name"`
-			Output    string `xml:"OutputUnits>Name"`
+			Value  number `xml:"Value"`
+			Input  string `xml:"InputUnits>Name"`
+			Output string `xml:"OutputUnits>Name"`
 		} `xml:"InstrumentSensitivity"`
 		Polynomial *struct{} `xml:"InstrumentPolynomial"`
 		Stages     []struct {
@@ -96,10 +99,11 @@ type (
 	}
 )
 
-// ReadStations reads a StationXML document. An error is an *Error with the line,
-// or says that the document is too large.
-func ReadStations(data []byte) (*Inventory, error) {
-	d, err := open(data, stationRoot, stationNamespace)
+// ReadStations reads a StationXML document. Stations and channels that cannot be
+// used are left out, and the Notes say why. An error is an *Error with the line,
+// says that the document is too large, or is the context's.
+func ReadStations(ctx context.Context, data []byte) (*Inventory, error) {
+	d, err := open(ctx, data, stationRoot, stationNamespace)
 	if err != nil {
 		return nil, err
 	}
@@ -121,6 +125,8 @@ type stationReader struct {
 	inventory *Inventory
 }
 
+func (r *stationReader) note(n Note) { r.inventory.Notes = append(r.inventory.Notes, n) }
+
 func (r *stationReader) network(code string) error {
 	return r.children(func(e xml.StartElement) error {
 		if e.Name.Local != "Station" {
@@ -131,8 +137,10 @@ func (r *stationReader) network(code string) error {
 }
 
 // station reads the station's own elements one by one, since its channels, which
-// are the bulk of a document, are read and dropped in turn.
+// are the bulk of a document, are read and dropped in turn. They stand without
+// their station.
 func (r *stationReader) station(network string, start xml.StartElement) error {
+	line := r.line()
 	raw := xmlStation{Code: attribute(start, "code"), Start: attribute(start, "startDate"), End: attribute(start, "endDate")}
 	var channels []Channel
 	err := r.children(func(e xml.StartElement) error {
@@ -149,12 +157,10 @@ func (r *stationReader) station(network string, start xml.StartElement) error {
 			raw.Site = site.Name
 			return err
 		case "Channel":
-			var c xmlChannel
-			if err := r.reader.DecodeElement(&c, &e); err != nil {
-				return err
+			c, ok, err := r.channel(network, strings.TrimSpace(raw.Code), e)
+			if ok {
+				channels = append(channels, c)
 			}
-			channel, err := c.channel(network, strings.TrimSpace(raw.Code))
-			channels = append(channels, channel)
 			return err
 		}
 		return r.reader.Skip()
@@ -164,81 +170,103 @@ func (r *stationReader) station(network string, start xml.StartElement) error {
 	}
 	s, err := raw.station(network)
 	if err != nil {
-		return r.fault(err)
+		r.note(leftOut(line, "station "+s.name().String(), err))
+	} else {
+		r.place(line, "station "+s.name().String(), &s.Latitude, &s.Longitude)
+		r.inventory.addStation(s)
 	}
 	for _, c := range channels {
 		c.SiteName = s.Name
 		r.inventory.addChannel(c)
 	}
-	r.inventory.addStation(s)
 	return nil
+}
+
+// channel reads one channel; ok is false where it is left out.
+func (r *stationReader) channel(network, station string, start xml.StartElement) (c Channel, ok bool, err error) {
+	raw, line := xmlChannel{}, r.line()
+	if err := r.reader.DecodeElement(&raw, &start); err != nil {
+		return c, false, err
+	}
+	c, err = raw.channel(network, station)
+	name := "channel " + c.name().String()
+	if err != nil {
+		r.note(leftOut(line, name, err))
+		return c, false, nil
+	}
+	r.place(line, name, &c.Latitude, &c.Longitude)
+	return c, true, nil
+}
+
+// place makes a position that is none unknown.
+func (r *stationReader) place(line int, name string, latitude, longitude *Number) {
+	var err error
+	if *latitude, *longitude, err = position(*latitude, *longitude); err != nil {
+		r.note(Note{line, fmt.Sprintf("%.80s: %v: position taken as unknown", name, err)})
+	}
 }
 
 func (raw *xmlStation) station(network string) (s Station, err error) {
 	s = Station{
 		Network: network, Code: strings.TrimSpace(raw.Code), Name: strings.TrimSpace(raw.Site),
-		Latitude: raw.Latitude.value, Longitude: raw.Longitude.value, ElevationM: raw.Elevation.value,
+		Latitude: raw.Latitude.Number, Longitude: raw.Longitude.Number, ElevationM: raw.Elevation.Number,
 	}
-	if s.Start, s.End, err = epoch(raw.Start, raw.End); err == nil {
-		err = position(raw.Latitude, raw.Longitude)
-	}
-	if err != nil {
-		return s, fmt.Errorf("station %s.%s: %w", s.Network, s.Code, err)
-	}
-	return s, nil
+	s.Start, s.End, err = epoch(raw.Start, raw.End)
+	return s, cmp.Or(err, firstBad(raw.Latitude, raw.Longitude, raw.Elevation), bothKnown(s.Latitude, s.Longitude))
 }
 
 func (raw *xmlChannel) channel(network, station string) (c Channel, err error) {
 	c = Channel{
 		Network: network, Station: station, Location: location(raw.Location), Code: strings.TrimSpace(raw.Code),
-		Latitude: raw.Latitude.value, Longitude: raw.Longitude.value, ElevationM: raw.Elevation.value, DepthM: raw.Depth.value,
-		AzimuthDeg: raw.Azimuth.pointer(), DipDeg: raw.Dip.pointer(), RateHz: raw.SampleRate.value,
-		Polynomial: raw.Response.Polynomial != nil, StageGain: raw.Response.stageGain(),
+		Latitude: raw.Latitude.Number, Longitude: raw.Longitude.Number, ElevationM: raw.Elevation.Number, DepthM: raw.Depth.Value,
+		AzimuthDeg: raw.Azimuth.Number, DipDeg: raw.Dip.Number, RateHz: raw.SampleRate.Value,
+		Polynomial: raw.Response.Polynomial != nil,
 	}
-	if s := raw.Response.Sensitivity; s != nil && s.Value.known {
-		c.Sensitivity = &Sensitivity{
-			Value: s.Value.value, FrequencyHz: s.Frequency.value,
-			InputUnit: strings.TrimSpace(s.Input), OutputUnit: strings.TrimSpace(s.Output),
-		}
+	if s := raw.Response.Sensitivity; s != nil && s.Value.Known {
+		c.Sensitivity = Sensitivity{Value: s.Value.Number, InputUnit: strings.TrimSpace(s.Input), OutputUnit: strings.TrimSpace(s.Output)}
 	}
 	c.Start, c.End, err = epoch(raw.Start, raw.End)
-	for _, check := range []error{
-		position(raw.Latitude, raw.Longitude), raw.Azimuth.within("azimuth", -360, 360), raw.Dip.within("dip", -90, 90),
-	} {
-		if err == nil {
-			err = check
-		}
+	var badGain error
+	c.StageGain, badGain = raw.Response.stageGain()
+	err = cmp.Or(err, firstBad(raw.Latitude, raw.Longitude, raw.Elevation, raw.Depth, raw.Azimuth, raw.Dip, raw.SampleRate),
+		raw.Response.badSensitivity(), badGain, bothKnown(c.Latitude, c.Longitude),
+		c.AzimuthDeg.within("azimuth", -360, 360), c.DipDeg.within("dip", -90, 90))
+	if c.AzimuthDeg.Known && err == nil {
+		c.AzimuthDeg.Value = math.Mod(c.AzimuthDeg.Value+360, 360)
 	}
-	if err != nil {
-		return c, fmt.Errorf("channel %s: %w", c.name(), err)
+	return c, err
+}
+
+func bothKnown(latitude, longitude Number) error {
+	if !latitude.Known || !longitude.Known {
+		return errNoPosition
 	}
-	if a := c.AzimuthDeg; a != nil {
-		*a = math.Mod(*a+360, 360)
+	return nil
+}
+
+func (r *xmlResponse) badSensitivity() error {
+	if r.Sensitivity == nil {
+		return nil
 	}
-	return c, nil
+	return r.Sensitivity.Value.bad
 }
 
 // stageGain is the product of all gains.
-func (r *xmlResponse) stageGain() float64 {
+func (r *xmlResponse) stageGain() (float64, error) {
 	product := 0.0
 	for i, s := range r.Stages {
 		if i == 0 {
 			product = 1
 		}
-		if s.Gain.known {
-			product *= s.Gain.value
+		if s.Gain.bad != nil {
+			return 0, s.Gain.bad
+		}
+		if s.Gain.Known {
+			product *= s.Gain.Value
 		}
 	}
-	return product
+	return product, nil
 }
-
-// name is the channel as XX.ABC.00.HNE.
-func (c *Channel) name() string {
-	return strings.Join([]string{c.Network, c.Station, c.Location, c.Code}, ".")
-}
-
-// name is the station as XX.ABC.
-func (s *Station) name() string { return s.Network + "." + s.Code }
 
 func epoch(from, to string) (start, end time.Time, err error) {
 	if start, err = instant(from); err != nil {
@@ -254,16 +282,6 @@ func epoch(from, to string) (start, end time.Time, err error) {
 		return start, end, fmt.Errorf("endDate %s is before startDate %s", to, from)
 	}
 	return start, end, nil
-}
-
-func position(latitude, longitude number) error {
-	if !latitude.known || !longitude.known {
-		return fmt.Errorf("no latitude or no longitude")
-	}
-	if err := latitude.within("latitude", -90, 90); err != nil {
-		return err
-	}
-	return longitude.within("longitude", -180, 180)
 }
 
 // location is a location code; blank and "--" are the same.
