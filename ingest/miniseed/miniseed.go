@@ -50,8 +50,7 @@ type Trace struct {
 	Encoding Encoding // of the first record
 	Flags    Flags    // of all its records
 	Offset   int      // byte at which the first record begins
-	Records  int
-	Repeated int // samples that another record held too, with the same values
+	Repeated int      // samples that another record held too, with the same values
 	// DriftS is the greatest distance in s between the time of a record and the
 	// one that start, rate and the samples before it give.
 	DriftS float64
@@ -95,9 +94,8 @@ func (c *Channel) Gaps() []Gap {
 // File is what was decoded.
 type File struct {
 	Channels []Channel // in the order of their codes
-	Records  int
-	Skipped  int // records without samples, or of text
-	Trailing int // bytes behind the last record, too few for another header
+	Skipped  int       // records without samples, or of text
+	Trailing int       // bytes behind the last record, too few for another header
 }
 
 // Error says what is wrong with a record.
@@ -126,7 +124,7 @@ func Decode(data []byte) (*File, error) {
 	slices.SortFunc(s.records, func(a, b record) int {
 		return cmp.Or(cmp.Compare(a.channel, b.channel), cmp.Compare(a.start, b.start), cmp.Compare(a.offset, b.offset))
 	})
-	f := &File{Channels: s.channels, Records: s.count, Skipped: s.skipped, Trailing: s.trailing}
+	f := &File{Channels: s.channels, Skipped: s.skipped, Trailing: s.trailing}
 	for first := 0; first < len(s.records); {
 		next := first + 1
 		for next < len(s.records) && s.records[next].channel == s.records[first].channel {

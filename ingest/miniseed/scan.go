@@ -42,7 +42,7 @@ type scanner struct {
 	source map[string]int32
 	ids    map[ID]int32
 
-	count, skipped, trailing int
+	skipped, trailing int
 }
 
 // Sniff says in a few words what makes data begin like miniSEED or a full SEED
@@ -89,7 +89,6 @@ func (s *scanner) scan() error {
 		if err != nil {
 			return &Error{at, err}
 		}
-		s.count++
 		at += n
 	}
 	return nil

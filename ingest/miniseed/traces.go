@@ -51,7 +51,7 @@ var errKinds = errors.New("samples change between integers and floating-point nu
 func join(records []record) (Trace, error) {
 	first := &records[0]
 	t := Trace{
-		Start: time.Unix(0, first.start).UTC(), Rate: first.rate, Encoding: first.encoding, Offset: first.offset, Records: len(records),
+		Start: time.Unix(0, first.start).UTC(), Rate: first.rate, Encoding: first.encoding, Offset: first.offset,
 	}
 	total := 0
 	for i := range records {
