@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"path/filepath"
 	"reflect"
+	"runtime"
 	"slices"
 	"strings"
 	"testing"
@@ -193,6 +194,41 @@ func TestMetadataStopped(t *testing.T) {
 	if used, err := m.Add(ctx, "doc.xml", []byte(quakeML(events...))); err != context.Canceled || used != "" || !m.IsEmpty() {
 		t.Errorf("Add = %q, %v", used, err)
 	}
+}
+
+// FuzzMetadata adds a document twice: no panic, errors with a line, memory bounded by
+// the size of the input, nothing new the second time. What package xml drops at once
+// is not counted.
+func FuzzMetadata(f *testing.F) {
+	for _, name := range []string{"station.xml", "events.xml"} {
+		f.Add(readFile(f, filepath.Join(recordsDir("miniseed"), name)))
+	}
+	f.Add([]byte(quakeML([4]string{"", "2041-03-04T08:00:00Z", "41", ""}, [4]string{"", "", "", ""})))
+	f.Fuzz(func(t *testing.T, data []byte) {
+		var start, end runtime.MemStats
+		runtime.ReadMemStats(&start)
+		m := &Metadata{}
+		used, err := m.Add(t.Context(), "a.xml", data)
+		runtime.ReadMemStats(&end)
+		if end.TotalAlloc-start.TotalAlloc > 1<<20+maxAllocated*uint64(len(data)) {
+			runtime.GC()
+			runtime.ReadMemStats(&end)
+			checkAllocated(t, max(end.HeapAlloc, start.HeapAlloc)-start.HeapAlloc, data)
+		}
+		if _, ok := errors.AsType[*ParseError](err); err != nil && (!ok || used != "" || !m.IsEmpty()) {
+			t.Fatalf("Add = %q, %v", used, err)
+		}
+		events, stations, channels := len(m.Events()), len(m.inventory.Stations), len(m.inventory.Channels)
+		if m.Add(t.Context(), "b.xml", data); len(m.Events()) != events || len(m.inventory.Stations) != stations || len(m.inventory.Channels) != channels {
+			t.Fatalf("%d events, %d stations and %d channels after the same once more", len(m.Events()), len(m.inventory.Stations), len(m.inventory.Channels))
+		}
+		for _, e := range m.Events() {
+			c := Channel{Event: e.Event}
+			if dropImplausible(&c); e.PublicID == "" || e.Origin.IsZero() || !e.Latitude.Known || c.Event != e.Event {
+				t.Fatalf("event %+v", e)
+			}
+		}
+	})
 }
 
 // BenchmarkAddEvents adds events one document each, the latest first.

@@ -262,7 +262,7 @@ func numberLike(line []byte) bool {
 // likeNumbers counts the fields that could be numbers and reports whether there
 // are none but those and missing values.
 func likeNumbers(line []byte) (numbers int, ok bool) {
-	for _, field := range bytes.FieldsFunc(line, isSeparator) {
+	for field := range bytes.FieldsFuncSeq(line, isSeparator) {
 		f := strings.Trim(string(field), "\"")
 		switch {
 		case strings.ContainsAny(f, "0123456789") && strings.Trim(f, "0123456789+-.eEdDT:Z−'") == "":

@@ -288,7 +288,9 @@ func FuzzReadStations(f *testing.F) {
 	f.Add(read(f, "station.xml"))
 	f.Fuzz(func(t *testing.T, data []byte) {
 		before := bytes.Clone(data)
-		v, err := ReadStations(t.Context(), data)
+		var v *Inventory
+		var err error
+		checkHeld(t, data, func() any { v, err = ReadStations(t.Context(), data); return v })
 		if !bytes.Equal(data, before) {
 			t.Error("ReadStations changed its input")
 		}
@@ -322,7 +324,10 @@ func FuzzReadStations(f *testing.F) {
 func FuzzReadEvents(f *testing.F) {
 	f.Add(read(f, "events.xml"))
 	f.Fuzz(func(t *testing.T, data []byte) {
-		events, left, err := ReadEvents(t.Context(), data)
+		var events []Event
+		var left []Note
+		var err error
+		checkHeld(t, data, func() any { events, left, err = ReadEvents(t.Context(), data); return events })
 		if err != nil {
 			checkError(t, err, data)
 			return
