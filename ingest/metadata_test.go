@@ -11,6 +11,8 @@ import (
 	"strings"
 	"testing"
 	"time"
+
+	"swaybook/ingest/fdsnxml"
 )
 
 // TestReadMetadata reads a folder, and documents that contradict nothing.
@@ -157,6 +159,27 @@ func TestEventsWithoutIdentifier(t *testing.T) {
 	}
 	if !slices.Equal(got, want) {
 		t.Errorf("events %q, want %q", got, want)
+	}
+}
+
+// Events come in the order of their times, however they are spread over documents,
+// and of two with one identifier the first stays.
+func TestEventsAreInOrder(t *testing.T) {
+	var m Metadata
+	for document, minutes := range [][]int{{5, 1}, {}, {3, 9, 1, 0}, {7}, {2, 4}} {
+		var events []fdsnxml.Event
+		for _, at := range minutes {
+			events = append(events, fdsnxml.Event{PublicID: fmt.Sprint("smi:invented/", at), Origin: mseedStart.Add(time.Duration(at) * time.Minute), Name: fmt.Sprint(document)})
+		}
+		m.addEvents("doc.xml", events)
+		m.Events() // one that was asked for before is no more in order
+	}
+	var got []string
+	for _, e := range m.Events() {
+		got = append(got, e.ID+"/"+e.Name)
+	}
+	if want := "0/2 1/0 2/4 3/2 4/4 5/0 7/3 9/2"; strings.Join(got, " ") != want {
+		t.Errorf("events %v, want %s", got, want)
 	}
 }
 
