@@ -200,11 +200,12 @@ func hasLog(path string) bool {
 	return err == nil && info.Size() > 0
 }
 
-// openPool opens the connections for reading. A question reads most pages once:
-// a large cache would only cost the time to touch its memory, which was 40 % of
-// a query over 3300 components.
+// openPool opens the connections for reading. A question reads most pages once: a
+// cache larger than the upper levels of the indices only costs the time to touch
+// its memory, which was a tenth of a query over 9000 components with 2 MB and two
+// thirds with 16 MB.
 func openPool(path string) (*sql.DB, error) {
-	return sql.Open("sqlite", dsn(path, "rw", "_pragma=query_only(1)&_pragma=cache_size(-2048)"))
+	return sql.Open("sqlite", dsn(path, "rw", "_pragma=query_only(1)&_pragma=cache_size(-400)"))
 }
 
 // dsn is a file: URI, since a plain path would drop the mode without a word.
