@@ -33,7 +33,7 @@ type Details uint
 // What can be asked for.
 const (
 	DetailRecord  Details = 1 << iota // the rest of Record
-	DetailMotion                      // AzimuthDeg, StepS and Start
+	DetailMotion                      // Axis, AzimuthDeg, StepS and Start
 	DetailPeaks                       // Peaks
 	DetailChannel                     // ID and the rest of Component, the source file's description too
 	AllDetails    = DetailRecord | DetailMotion | DetailPeaks | DetailChannel
@@ -117,17 +117,17 @@ func orNaN(x *float64) float64 {
 func (v *componentRow) columns(d Details) (names string, into []any) {
 	names, into = `c.record_id, c.role`, []any{&v.RecordID, &v.Role}
 	if d&DetailMotion != 0 {
-		names += `, c.azimuth_deg, c.step_s, coalesce(c.start_at, '')`
-		into = append(into, &v.AzimuthDeg, &v.StepS, &v.start)
+		names += `, c.axis, c.azimuth_deg, c.step_s, coalesce(c.start_at, '')`
+		into = append(into, &v.Axis, &v.AzimuthDeg, &v.StepS, &v.start)
 	}
 	if d&DetailPeaks != 0 {
 		names += `, pga.value, pgv.value, pgd.value`
 		into = append(into, &v.pga, &v.pgv, &v.pgd)
 	}
 	if d&DetailChannel != 0 {
-		names += `, c.id, c.axis, c.label, c.rank, c.channel, c.samples, c.unit, c.processing, c.low_cut_hz, c.high_cut_hz,
+		names += `, c.id, c.label, c.rank, c.channel, c.samples, c.unit, c.processing, c.low_cut_hz, c.high_cut_hz,
 			c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format`
-		into = append(into, &v.ID, &v.Axis, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing, &v.LowCutHz, &v.HighCutHz,
+		into = append(into, &v.ID, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing, &v.LowCutHz, &v.HighCutHz,
 			&v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine, &v.SourcePath, &v.SourceSHA256, &v.SourceFormat)
 	}
 	return names, into

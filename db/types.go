@@ -21,6 +21,13 @@ const (
 	RoleV  = "v"
 )
 
+// The axes of components.
+const (
+	AxisHorizontal = "horizontal"
+	AxisVertical   = "vertical"
+	AxisUnknown    = "unknown"
+)
+
 // Roles of what is computed of both horizontals over all directions: the median
 // and the maximum. They have spectra and measures, and no component.
 const (
@@ -86,7 +93,7 @@ type Distances struct {
 // Component is one direction of a record, without its samples.
 type Component struct {
 	Role       string
-	Axis       string // "horizontal", "vertical" or "unknown"
+	Axis       string // AxisHorizontal, AxisVertical or AxisUnknown
 	Label      string // direction as the file writes it
 	Rank       int    // 1 or 2 where the label ranks a horizontal without azimuth
 	AzimuthDeg *float64

@@ -52,9 +52,9 @@ func channelOf(h db.HeldComponent) ingest.Channel {
 
 // axes are the store's names of the axes.
 var axes = map[ingest.Axis]string{
-	ingest.AxisUnknown:    "unknown",
-	ingest.AxisHorizontal: "horizontal",
-	ingest.AxisVertical:   "vertical",
+	ingest.AxisUnknown:    db.AxisUnknown,
+	ingest.AxisHorizontal: db.AxisHorizontal,
+	ingest.AxisVertical:   db.AxisVertical,
 }
 
 func componentOf(s solved, role string) db.Component {

@@ -46,9 +46,11 @@ type attributes struct {
 	Siting        string `expr:"siting"`
 	Instrument    string `expr:"instrument"`
 	Component     string `expr:"component"`
+	Axis          string `expr:"axis"`
 	Format        string `expr:"format"`
 	Processing    string `expr:"processing"`
 	Source        string `expr:"source"`
+	Warnings      string `expr:"warnings"`
 
 	SiteClassEN1998 string `expr:"site_class_en1998"`
 	SiteClassNEHRP  string `expr:"site_class_nehrp"`
@@ -90,7 +92,7 @@ var numbers = []struct {
 // texts lists the attributes that are strings.
 var texts = []string{
 	"record", "event", "event_name", "magnitude_type", "station", "network", "station_name",
-	"siting", "site_class_en1998", "site_class_nehrp", "instrument", "component", "format", "processing", "source",
+	"siting", "site_class_en1998", "site_class_nehrp", "instrument", "component", "axis", "format", "processing", "source", "warnings",
 }
 
 // attributeDetails says what has to be read of components for an attribute;
@@ -99,10 +101,10 @@ var attributeDetails = map[string]db.Details{
 	"distance_km": db.DetailRecord, "epicentral_km": db.DetailRecord, "hypocentral_km": db.DetailRecord, "rupture_km": db.DetailRecord, "jb_km": db.DetailRecord,
 	"vs30_m_s": db.DetailRecord, "station_latitude": db.DetailRecord, "station_longitude": db.DetailRecord,
 	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "site_class_en1998": db.DetailRecord, "site_class_nehrp": db.DetailRecord, "instrument": db.DetailRecord,
-	"dt_s": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
+	"dt_s": db.DetailMotion, "axis": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
 	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
 	"low_cut_hz": db.DetailChannel, "high_cut_hz": db.DetailChannel,
-	"format": db.DetailChannel, "processing": db.DetailChannel, "source": db.DetailChannel,
+	"format": db.DetailChannel, "processing": db.DetailChannel, "source": db.DetailChannel, "warnings": db.DetailChannel,
 }
 
 // WhereAttributes lists every attribute that an expression may use, for people.
@@ -122,7 +124,7 @@ func componentAttributes(c *db.HeldComponent) attributes {
 		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
 		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
 		AzimuthDeg: orNaN(c.AzimuthDeg), LowCutHz: orNaN(c.LowCutHz), HighCutHz: orNaN(c.HighCutHz),
-		Component: c.Role, Format: c.SourceFormat, Processing: c.Processing, Source: c.SourcePath,
+		Component: c.Role, Axis: c.Axis, Format: c.SourceFormat, Processing: c.Processing, Source: c.SourcePath, Warnings: strings.Join(c.Warnings, "; "),
 	}
 	describeRecord(&a, c.Record)
 	return a
@@ -207,7 +209,8 @@ func pairAttributes(m *motion) attributes {
 	// The builtins give NaN where either is NaN.
 	a.StepS, a.Samples, a.DurationS = max(a.StepS, b.StepS), min(a.Samples, b.Samples), min(a.DurationS, b.DurationS)
 	a.LowCutHz, a.HighCutHz = max(a.LowCutHz, b.LowCutHz), min(a.HighCutHz, b.HighCutHz)
-	a.Format, a.Processing, a.Source = both(a.Format, b.Format), both(a.Processing, b.Processing), both(a.Source, b.Source)
+	a.Axis, a.Format, a.Processing, a.Source = both(a.Axis, b.Axis), both(a.Format, b.Format), both(a.Processing, b.Processing), both(a.Source, b.Source)
+	a.Warnings = both(a.Warnings, b.Warnings)
 	return a
 }
 

@@ -43,8 +43,7 @@ const exportGroup = 16
 // about 1 kB, is held. Nothing is written before the question is found right
 // and the selection not empty; see SpectrumQuestion.Ask for the errors.
 func (q ExportQuestion) Write(ctx context.Context, store *db.Store, w io.Writer) (*ExportSummary, error) {
-	selection, err := q.Selection.withDefaults(ComponentAll, SitingAll, storedComponents)
-	selection.IncludeDuplicates = true
+	selection, err := q.ofEverything().withDefaults(ComponentAll, SitingAll, storedComponents)
 	if err != nil {
 		return nil, err
 	}

@@ -42,6 +42,7 @@ type RecordRow struct {
 	Siting           string   `json:"siting"`
 	Component        string   `json:"component"`
 	Channel          *string  `json:"channel"`
+	Axis             string   `json:"axis"` // "horizontal", "vertical" or "unknown"
 	AzimuthDeg       *float64 `json:"azimuth_deg"`
 	Start            *string  `json:"start"` // UTC, RFC 3339
 	StepS            float64  `json:"dt_s"`
@@ -73,8 +74,7 @@ type RecordsAnswer struct {
 // selected the error is an EmptyError, and the answer an empty list that can be
 // written all the same.
 func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnswer, error) {
-	selection, err := q.Selection.withDefaults(ComponentRecorded, SitingAll, storedComponents)
-	selection.IncludeDuplicates = true
+	selection, err := q.ofEverything().withDefaults(ComponentRecorded, SitingAll, storedComponents)
 	if err != nil {
 		return nil, err
 	}
@@ -108,7 +108,7 @@ func rowOf(m *motion) RecordRow {
 func (r *RecordRow) takePair(m *motion) {
 	second := recordRow(m.members[1])
 	a := m.attributes()
-	r.Component, r.AzimuthDeg, r.Line = a.Component, nil, nil
+	r.Component, r.Axis, r.AzimuthDeg, r.Line = a.Component, a.Axis, nil, nil
 	r.StepS, r.Samples, r.DurationS = a.StepS, max(r.Samples, second.Samples), max(r.DurationS, second.DurationS)
 	r.PGA, r.PGV, r.PGD = a.PGA, a.PGV, a.PGD
 	r.LowCutHz, r.HighCutHz = knownOrNull(a.LowCutHz), knownOrNull(a.HighCutHz)
@@ -149,7 +149,7 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		SiteClassEN1998: orNull(en1998), SiteClassNEHRP: orNull(nehrp),
 		DistanceKM: d.BestKM, EpicentralKM: d.EpicentralKM, HypocentralKM: d.HypocentralKM, RuptureKM: d.RuptureKM, JoynerBooreKM: d.JoynerBooreKM,
 		Instrument: orNull(c.Record.Instrument), Siting: c.Record.Siting,
-		Component: c.Role, Channel: orNull(c.Channel), AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(startOf(c)),
+		Component: c.Role, Channel: orNull(c.Channel), Axis: c.Axis, AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(startOf(c)),
 		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
 		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
 		Unit: orNull(c.Unit), Processing: orNull(c.Processing), LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz,

@@ -57,7 +57,7 @@ var recordsHeader = []string{
 	"record", "event", "event_name", "origin", "magnitude", "magnitude_type", "depth_km", "event_latitude", "event_longitude",
 	"network", "station", "station_name", "station_latitude", "station_longitude", "vs30_m_s", "site_class_en1998", "site_class_nehrp",
 	"distance_km", "epicentral_km", "hypocentral_km", "rupture_km", "jb_km",
-	"instrument", "siting", "component", "channel", "azimuth_deg", "start", "dt_s", "samples", "duration_s",
+	"instrument", "siting", "component", "channel", "axis", "azimuth_deg", "start", "dt_s", "samples", "duration_s",
 	"pga_g", "pgv_m_s", "pgd_m", "unit", "processing", "low_cut_hz", "high_cut_hz", "format", "source", "line", "sha256", "warnings", "duplicate_of",
 }
 
@@ -88,7 +88,7 @@ func (r *RecordRow) csv(l *csvLine) {
 	for _, x := range []*float64{r.DistanceKM, r.EpicentralKM, r.HypocentralKM, r.RuptureKM, r.JoynerBooreKM} {
 		l.number(orNaN(x))
 	}
-	l.words(orEmpty(r.Instrument), r.Siting, r.Component, orEmpty(r.Channel))
+	l.words(orEmpty(r.Instrument), r.Siting, r.Component, orEmpty(r.Channel), r.Axis)
 	l.number(orNaN(r.AzimuthDeg))
 	l.word(orEmpty(r.Start))
 	l.number(r.StepS)

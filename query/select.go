@@ -47,8 +47,8 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		return nil, err
 	}
 	details |= condition.details()
-	if s.Component.IsRotated() || s.Component == ComponentAll {
-		details |= db.DetailMotion // by which pairs are rotated
+	if s.Component.IsRotated() || s.Component == ComponentAll || !s.IncludeUnknownDirections {
+		details |= db.DetailMotion // by which pairs are rotated, and what is horizontal
 	}
 	held, err := snapshot.Components(ctx, details)
 	if err != nil {
@@ -168,12 +168,21 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
+	case !p.selection.IncludeUnknownDirections && m.hasUnknownDirection():
+		return reasonUnknownDirection, false, nil
 	case p.details&db.DetailPeaks != 0 && m.hasDamagedPeaks():
 		return reasonDamaged, false, nil
 	case unknown != "":
 		return unknown + " unknown", false, nil
 	}
 	return "", true, nil
+}
+
+// reasonUnknownDirection is of components that may be horizontal or vertical.
+const reasonUnknownDirection = "direction unknown"
+
+func (m *motion) hasUnknownDirection() bool {
+	return slices.ContainsFunc(m.members, func(c *db.HeldComponent) bool { return c.Axis == db.AxisUnknown })
 }
 
 func (m *motion) hasDamagedPeaks() bool {

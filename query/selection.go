@@ -174,6 +174,15 @@ type Selection struct {
 	// IncludeDuplicates takes motions too that the store holds in a better version;
 	// lists and export do always.
 	IncludeDuplicates bool
+	// IncludeUnknownDirections takes components too of which nobody says whether they
+	// are horizontal; lists and export do always.
+	IncludeUnknownDirections bool
+}
+
+// ofEverything is s for lists and export, which show what statistics leave out.
+func (s Selection) ofEverything() Selection {
+	s.IncludeDuplicates, s.IncludeUnknownDirections = true, true
+	return s
 }
 
 // withDefaults fills in what is empty and checks the rest.

@@ -36,6 +36,7 @@ func statisticsFlags() []cli.Flag {
 		"what instruments stand on: ground (free-field, ground, and where unknown), free-field, structure, borehole, unknown, all, or a list (default: ground)")
 	return append(flags,
 		&cli.BoolFlag{Name: "include-duplicates", DisableDefaultText: true, Usage: "take every held version of a motion, not the best one alone"},
+		&cli.BoolFlag{Name: "include-unknown-directions", DisableDefaultText: true, Usage: "take components too of which nothing says whether they are horizontal"},
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
 		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
 		&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
@@ -53,7 +54,7 @@ func newSelection(c *cli.Context, component func(string) (query.Component, error
 	if s.Component, err = component(c.String("component")); err != nil {
 		return s, err
 	}
-	s.IncludeDuplicates = c.Bool("include-duplicates")
+	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
 	s.Siting, err = siting(c.String("siting"))
 	return s, err
 }
