@@ -33,10 +33,12 @@ func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
 	default:
 		err = c.sensitivity(epoch)
 	}
+	if err == nil {
+		err = c.orient(epoch)
+	}
 	if err != nil {
 		return err
 	}
-	c.orient(epoch)
 	if epoch != nil {
 		c.place(epoch)
 	}
@@ -139,17 +141,10 @@ func (c *mseedChannel) place(e *fdsnxml.Channel) {
 	}
 }
 
-// The angles in degrees by which an axis may be off the horizontal, the vertical
-// or its letter before a warning says so; from verticalDip on it is vertical.
-const (
-	axisTolerance = 5
-	verticalDip   = 45
-)
-
 // orient takes the direction from dip and azimuth, which are down from the
 // horizontal and clockwise from north, else from the letters E, N and Z; other
-// letters say nothing.
-func (c *mseedChannel) orient(e *fdsnxml.Channel) {
+// letters say nothing. A tilted sensor is refused.
+func (c *mseedChannel) orient(e *fdsnxml.Channel) error {
 	letter := c.id.Channel[len(c.id.Channel)-1:]
 	byLetter := Orientation{}
 	if strings.Contains("ENZ", letter) {
@@ -158,36 +153,36 @@ func (c *mseedChannel) orient(e *fdsnxml.Channel) {
 	byLetter.Label = letter
 	c.Orientation = byLetter
 	if e == nil {
-		return
+		return nil
 	}
 	if dip := e.DipDeg; dip.Known {
-		c.byDip(dip.Value)
+		if err := c.byDip(dip.Value); err != nil {
+			return err
+		}
 	}
 	if !e.AzimuthDeg.Known || c.Orientation.Axis == AxisVertical {
-		return
+		return nil
 	}
 	c.Orientation.Axis, c.Orientation.AzimuthDeg = AxisHorizontal, Number(e.AzimuthDeg)
 	if a := byLetter.AzimuthDeg; a.Known && math.Abs(math.Remainder(e.AzimuthDeg.Value-a.Value, 360)) > axisTolerance {
 		c.warn("a channel %s with an azimuth of %g°: the azimuth taken", letter, e.AzimuthDeg.Value)
 	}
+	return nil
 }
 
 // byDip tells vertical from horizontal. A vertical that is positive down is
 // turned.
-func (c *mseedChannel) byDip(dip float64) {
-	o := &c.Orientation
-	if math.Abs(dip) > verticalDip {
-		*o = Orientation{Axis: AxisVertical, Label: o.Label}
-		c.turned = c.turned != (dip > 0)
-		if math.Abs(dip) < 90-axisTolerance {
-			c.warn("a dip of %g°: taken for vertical", dip)
-		}
-		return
+func (c *mseedChannel) byDip(dipDeg float64) error {
+	axis, err := axisOfDip(dipDeg)
+	if err != nil {
+		return refuse(0, c.id.String(), "%w", err)
 	}
-	if o.Axis != AxisHorizontal {
-		*o = Orientation{Axis: AxisHorizontal, Label: o.Label}
+	if o := &c.Orientation; axis == AxisVertical || o.Axis != AxisHorizontal {
+		*o = Orientation{Axis: axis, Label: o.Label}
 	}
-	if math.Abs(dip) > axisTolerance {
-		c.warn("a dip of %g°: taken for horizontal", dip)
+	if axis == AxisVertical && dipDeg > 0 {
+		c.turned = !c.turned
 	}
+	warnDip(&c.Channel, dipDeg, axis)
+	return nil
 }

@@ -271,23 +271,34 @@ func (h *smcHeader) warnLongitude(c *Channel) {
 const smcSlackDeg = 1
 
 // orientation joins the component of the text with integers 13, the angle from
-// straight up, and 14, the azimuth, which is one only where 13 is 90.
+// straight up, and 14, the azimuth, which is one only where 13 is level. A
+// tilted sensor is refused, whatever the text says.
 func (h *smcHeader) orientation(c *Channel) (Orientation, error) {
 	label, line := h.find(smcComponent)
 	label = beforeGap(label)
 	text := smcDirection(label)
 	tilt, azimuth := h.integer(13), h.integer(14)
-	level := tilt == Known(90) && azimuth.Known && azimuth.Value >= 0 && azimuth.Value <= 360
+	axis := AxisUnknown
+	if tilt.Known && tilt.Value >= 0 && tilt.Value <= 180 {
+		var err error
+		if axis, err = axisOfDip(tilt.Value - 90); err != nil {
+			return text, refuse(h.integers.line(13), h.integers.what(13), "%g° from straight up: %w", tilt.Value, err)
+		}
+	}
+	level := axis == AxisHorizontal && azimuth.Known && azimuth.Value >= 0 && azimuth.Value <= 360
 	switch {
 	case text.AzimuthDeg.Known && level && angleBetween(text.AzimuthDeg.Value, azimuth.Value) > smcSlackDeg:
 		return text, refuse(line, "component", "the text says %s, integer 14 in line %d says %g degrees", found(label), h.integers.line(14), azimuth.Value)
-	case text.AzimuthDeg.Known && (tilt == Known(0) || tilt == Known(180)):
+	case text.AzimuthDeg.Known && axis == AxisVertical:
 		c.warn("direction is %s in the text and vertical by integer 13; the former taken", found(label))
 	case text.Axis != AxisUnknown:
 	case level:
-		return Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(math.Mod(azimuth.Value, 360)), Label: orElse(label, fmt.Sprintf("%g", azimuth.Value))}, nil
-	case tilt == Known(0) || tilt == Known(180) || azimuth == Known(500) || azimuth == Known(600):
-		return Orientation{Axis: AxisVertical, Label: orElse(label, "vertical")}, nil
+		text = Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(math.Mod(azimuth.Value, 360)), Label: orElse(label, fmt.Sprintf("%g", azimuth.Value))}
+	case axis == AxisVertical || azimuth == Known(500) || azimuth == Known(600):
+		text = Orientation{Axis: AxisVertical, Label: orElse(label, "vertical")}
+	}
+	if axis == text.Axis {
+		warnDip(c, tilt.Value-90, axis)
 	}
 	return text, nil
 }

@@ -107,6 +107,14 @@ func TestSMCVariants(t *testing.T) {
 			`direction is "005" in the text and vertical by integer 13; the former taken`},
 		{"vertical by integer 13 alone", integer(edit(t, base, 6, "component= 005", ""), 13, "       180"), Hints{},
 			func(c *Channel) bool { return c.Orientation.Axis == AxisVertical }, ""},
+		{"level but for a little", integer(edit(t, base, 6, "component= 005", ""), 13, "        85"), Hints{},
+			func(c *Channel) bool { return c.Orientation.AzimuthDeg == Known(5) }, ""},
+		{"as far from level as may be", integer(edit(t, base, 6, "component= 005", ""), 13, "       105"), Hints{},
+			func(c *Channel) bool { return c.Orientation.AzimuthDeg == Known(5) }, "a dip of 15°: taken for horizontal"},
+		{"as far from upright as may be", integer(edit(t, base, 6, "component= 005", ""), 13, "        15"), Hints{},
+			func(c *Channel) bool { return c.Orientation.Axis == AxisVertical }, "a dip of -75°: taken for vertical"},
+		{"integer 13 that is no angle from upright", integer(base, 13, "       225"), Hints{},
+			func(c *Channel) bool { return c.Orientation.AzimuthDeg == Known(5) }, ""},
 		{"vertical by code 500 alone", integer(integer(edit(t, base, 6, "component= 005", ""), 13, "    -32768"), 14, "       500"), Hints{},
 			func(c *Channel) bool { return c.Orientation.Axis == AxisVertical }, ""},
 		{"up as 500 in the text", edit(t, base, 6, "= 005", "= 500"), Hints{},
@@ -224,6 +232,8 @@ func TestSMCUnknownUnit(t *testing.T) {
 func TestSMCRefusals(t *testing.T) {
 	base := smcNorth.lines()
 	raw := smcRaw.lines()
+	tilted := func(integer13 string) []string { return edit(t, base, 13, base[12][40:50], integer13) }
+	const turn = " is neither horizontal (up to 15°) nor vertical (from 75°): the three channels of the sensor must be turned into vertical, north and east first"
 	noRate := func(lines []string, v string) []string {
 		return edit(t, lines, 18, lines[17][15:30], v)
 	}
@@ -261,6 +271,9 @@ func TestSMCRefusals(t *testing.T) {
 		{"no rate", noRate(base, null), Hints{}, "case:18: dt: the file states no time step: give it with --dt or in the catalogue's dt_s column"},
 		{"rate too high", noRate(base, "  1.0000000E+04"), Hints{}, "case:18: dt: sampling rate 10000 /s is outside 1 to 2000 /s"},
 		{"rate negative", noRate(base, " -2.0000000E+02"), Hints{}, "case:18: dt: sampling rate -200 /s is outside 1 to 2000 /s"},
+		{"tilted", tilted("        55"), Hints{}, "case:13: integer 13: 55° from straight up: a dip of -35°" + turn},
+		{"tilted, just beyond the horizontal", tilted("       106"), Hints{}, "case:13: integer 13: 106° from straight up: a dip of 16°" + turn},
+		{"tilted, just beyond the vertical", tilted("        16"), Hints{}, "case:13: integer 13: 16° from straight up: a dip of -74°" + turn},
 		{"directions differ", edit(t, base, 6, "= 005", "= 007"), Hints{}, `case:6: component: the text says "007", integer 14 in line 13 says 5 degrees`},
 		{"peaks differ", edit(t, base, 7, "-187.00", "-287.00"), Hints{}, "case:7: peak: the text says 287 cm/s2, reals 29 and 31 say 187 cm/s2"},
 		{"samples and peak differ", edit(t, edit(t, base, 24, "-1.8700000E+02", "-3.8700000E+02"), 7, "-187.00", "-387.00"), Hints{},
