@@ -1,7 +1,6 @@
 package fdsnxml
 
 import (
-	"bytes"
 	"context"
 	"encoding/xml"
 	"errors"
@@ -40,10 +39,10 @@ const (
 // Kind says which document data begins like: Stations, Events, or "" for all
 // else. It looks at the root element only.
 func Kind(data []byte) string {
-	if !bytes.HasPrefix(bytes.TrimSpace(bytes.TrimPrefix(data, []byte("\ufeff"))), []byte("<")) {
+	if !startsMarkup(data) {
 		return ""
 	}
-	d := xml.NewDecoder(bytes.NewReader(data))
+	d := newDecoder(data, true)
 	for {
 		token, err := d.Token()
 		if err != nil {
@@ -171,7 +170,7 @@ func open(ctx context.Context, data []byte, root string, namespaces ...string) (
 	if len(data) > MaxSize {
 		return nil, fmt.Errorf("document of %d bytes is larger than the limit of %d", len(data), MaxSize)
 	}
-	s := &source{decoder: xml.NewDecoder(bytes.NewReader(data)), namespaces: namespaces, stopped: ctx.Err}
+	s := &source{decoder: newDecoder(data, false), namespaces: namespaces, stopped: ctx.Err}
 	d := &document{source: s, reader: xml.NewTokenDecoder(s)}
 	for {
 		token, err := d.reader.Token()
@@ -196,6 +195,9 @@ func (d *document) fault(err error) error {
 		return e
 	}
 	line := d.line()
+	if e, ok := errors.AsType[errEncoding](err); ok {
+		return &Error{Line: line, Err: e.error}
+	}
 	if e, ok := errors.AsType[*xml.SyntaxError](err); ok {
 		return &Error{Line: line, Err: errors.New(e.Msg)}
 	}

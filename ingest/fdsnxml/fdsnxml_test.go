@@ -3,6 +3,7 @@ package fdsnxml
 import (
 	"bytes"
 	"context"
+	"encoding/binary"
 	"errors"
 	"fmt"
 	"math"
@@ -12,6 +13,7 @@ import (
 	"strings"
 	"testing"
 	"time"
+	"unicode/utf16"
 )
 
 func read(t testing.TB, name string) []byte {
@@ -180,6 +182,107 @@ func damaged(t *testing.T, name string, replace ...string) []byte {
 	return []byte(text)
 }
 
+// encoded returns a document in another encoding, and declares it: bytes for the
+// characters of Windows-1252 or of ISO-8859-1, or, for UTF-16, units behind the mark.
+func encoded(t testing.TB, text, declared string, order binary.AppendByteOrder) []byte {
+	t.Helper()
+	text = strings.Replace(text, `encoding="UTF-8"`, `encoding="`+declared+`"`, 1)
+	if order != nil {
+		out := order.AppendUint16(nil, 0xfeff)
+		for _, u := range utf16.Encode([]rune(text)) {
+			out = order.AppendUint16(out, u)
+		}
+		return out
+	}
+	var out []byte
+	for _, r := range text {
+		switch {
+		case r < 0x100:
+			out = append(out, byte(r))
+		case r == '–': // U+2013, by the table of Windows-1252
+			out = append(out, 0x96)
+		case r == '€':
+			out = append(out, 0x80)
+		default:
+			t.Fatalf("no byte for %q", r)
+		}
+	}
+	return out
+}
+
+// TestEncodings reads the same of a document in every encoding that is read, and
+// names the others.
+func TestEncodings(t *testing.T) {
+	station := string(damaged(t, "station.xml", "Culmination Reef", "Überfluß – Cañón"))
+	event := strings.Replace(string(read(t, "events.xml")), "<q:quakeml", "<!-- Größe –€ -->\n<q:quakeml", 1)
+	wantStations, err := ReadStations(t.Context(), []byte(station))
+	if err != nil || wantStations.Stations[0].Name != "Überfluß – Cañón" {
+		t.Fatal(err, wantStations)
+	}
+	wantEvents, _, err := ReadEvents(t.Context(), []byte(event))
+	if err != nil {
+		t.Fatal(err)
+	}
+	const other = ` is not read (UTF-8, ISO-8859-1, Windows-1252 and, with a byte order mark, UTF-16 are): save it as UTF-8`
+	little, big := binary.LittleEndian, binary.BigEndian
+	for _, k := range []struct {
+		declared string
+		order    binary.AppendByteOrder
+		prefix   string
+		want     string // the error
+	}{
+		{declared: "windows-1252"}, {declared: "Windows-1252"}, {declared: "ISO-8859-1"}, {declared: "iso-8859-1"}, {declared: "latin1"}, {declared: "CP1252"},
+		{declared: "UTF-16", order: little}, {declared: "UTF-16", order: big}, {declared: "utf-16le", order: little}, {declared: "UTF-8", order: little},
+		{declared: "ISO-8859-2", want: `line 1: encoding "ISO-8859-2"` + other},
+		{declared: "Shift_JIS", want: `line 1: encoding "Shift_JIS"` + other},
+		{declared: "UTF-32", want: `line 1: encoding "UTF-32"` + other},
+		{declared: "UTF-16", want: `line 1: declares the encoding "UTF-16" and has no byte order mark: save it as UTF-8`},
+		{declared: "ISO-8859-1", order: big, want: `line 1: declares the encoding "ISO-8859-1" and begins with the byte order mark of UTF-16`},
+		{declared: "ISO-8859-1", prefix: "\xef\xbb\xbf", want: `line 1: declares the encoding "ISO-8859-1" and begins with the byte order mark of UTF-8`},
+	} {
+		prepared := func(text string) []byte { return append([]byte(k.prefix), encoded(t, text, k.declared, k.order)...) }
+		name := fmt.Sprint(k.declared, " ", k.order)
+		stations, err := ReadStations(t.Context(), prepared(station))
+		if k.want != "" && (err == nil || err.Error() != k.want) || k.want == "" && (err != nil || !reflect.DeepEqual(stations, wantStations)) {
+			t.Errorf("%s: stations %v, want %s", name, err, k.want)
+		}
+		events, _, err := ReadEvents(t.Context(), prepared(event))
+		if k.want != "" && (err == nil || err.Error() != k.want) || k.want == "" && (err != nil || !reflect.DeepEqual(events, wantEvents)) {
+			t.Errorf("%s: events %v, want %s", name, err, k.want)
+		}
+		// Whatever the encoding, a document is known for what it is.
+		if a, b := Kind(prepared(station)), Kind(prepared(event)); a != Stations || b != Events {
+			t.Errorf("%s: kinds %q and %q", name, a, b)
+		}
+	}
+}
+
+// TestEncodedBounds holds documents in other encodings to what holds for those in
+// UTF-8.
+func TestEncodedBounds(t *testing.T) {
+	for _, k := range []struct{ name, old, by, want string }{
+		{"document type", "<!--", `<!DOCTYPE a [<!ENTITY b "c">]><!--`, "line 2: the document declares a type or entities, which is refused"},
+		{"deep", "<Site>", strings.Repeat("<Site>", 60), "line 12: elements are nested deeper than 40"},
+		{"declared twice", "<Site>", `<?xml version="1.0" encoding="latin1"?><Site>`, "line 12: the encoding is declared twice"},
+		{"number", "<Latitude>", "<Latitude>–", ""},
+	} {
+		text := string(damaged(t, "station.xml", k.old, k.by))
+		for _, data := range [][]byte{encoded(t, text, "ISO-8859-1", nil), encoded(t, text, "UTF-16", binary.LittleEndian)} {
+			v, err := ReadStations(t.Context(), data)
+			if k.want == "" && (err != nil || len(v.Notes) != 1) || k.want != "" && (err == nil || err.Error() != k.want) {
+				t.Errorf("%s: error %v, want %q", k.name, err, k.want)
+			}
+		}
+	}
+	// Declarations in a row would each wrap what reads the one before.
+	many := []byte(strings.Repeat(`<?xml version="1.0" encoding="latin1"?>`, 10_000))
+	checkHeld(t, many, func() any { v, _ := ReadStations(t.Context(), many); return v })
+	checkHeld(t, many, func() any { return Kind(many) })
+	if Kind(many) != "" {
+		t.Error("declarations alone are a document")
+	}
+}
+
 // TestRefusals compares whole messages of documents that are refused.
 func TestRefusals(t *testing.T) {
 	stations, events := read(t, "station.xml"), read(t, "events.xml")
@@ -286,6 +389,8 @@ func TestStopped(t *testing.T) {
 
 func FuzzReadStations(f *testing.F) {
 	f.Add(read(f, "station.xml"))
+	f.Add(encoded(f, string(read(f, "station.xml")), "windows-1252", nil))
+	f.Add(encoded(f, string(read(f, "station.xml")), "UTF-16", binary.LittleEndian))
 	f.Fuzz(func(t *testing.T, data []byte) {
 		before := bytes.Clone(data)
 		var v *Inventory
@@ -323,6 +428,8 @@ func FuzzReadStations(f *testing.F) {
 
 func FuzzReadEvents(f *testing.F) {
 	f.Add(read(f, "events.xml"))
+	f.Add(encoded(f, string(read(f, "events.xml")), "ISO-8859-1", nil))
+	f.Add(encoded(f, string(read(f, "events.xml")), "UTF-16", binary.BigEndian))
 	f.Fuzz(func(t *testing.T, data []byte) {
 		var events []Event
 		var left []Note
