@@ -86,7 +86,8 @@ const maxCatalogueErrors = 20
 
 // ReadCatalogue reads a catalogue in CSV (RFC 4180) with commas or semicolons,
 // lines that begin with # being comments. The first row names the columns, in
-// any order and case:
+// any order and case, and its delimiters are those of all rows: where they are
+// semicolons, numbers may have a decimal comma.
 //
 //	file event station network component
 //	event_name origin_time magnitude magnitude_type depth_km
@@ -145,7 +146,7 @@ func readCatalogue(r io.Reader) (*Catalogue, []*ParseError) {
 		if strings.TrimSpace(strings.Join(cells, "")) == "" {
 			continue // spreadsheets leave such rows at the end
 		}
-		row, bad := readRow(columns, cells, line)
+		row, bad := readRow(columns, cells, line, table.Comma == ';')
 		faults = append(faults, bad...)
 		if len(bad) > 0 {
 			continue
@@ -233,8 +234,9 @@ func (c *Catalogue) header(table *csv.Reader) ([]*catalogueColumn, []*ParseError
 	return columns, faults
 }
 
-// readRow reads the cells of one row and reports all that is wrong with it.
-func readRow(columns []*catalogueColumn, cells []string, line int) (*catalogueRow, []*ParseError) {
+// readRow reads the cells of one row, numbers in them perhaps with decimal commas,
+// and reports all that is wrong with it.
+func readRow(columns []*catalogueColumn, cells []string, line int, commas bool) (*catalogueRow, []*ParseError) {
 	if len(cells) != len(columns) {
 		return nil, []*ParseError{refuse(line, "", "%d fields, the header has %d", len(cells), len(columns))}
 	}
@@ -245,6 +247,9 @@ func readRow(columns []*catalogueColumn, cells []string, line int) (*catalogueRo
 			continue
 		}
 		text := latin([]byte(strings.TrimSpace(cells[i])))
+		if commas && column.number {
+			text = withPoint("", text)
+		}
 		if isNotStated(text) {
 			continue
 		}

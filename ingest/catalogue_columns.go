@@ -18,23 +18,24 @@ const (
 	scopeFile   // wanted before a file is parsed
 )
 
-// catalogueColumn is one column: its name, what it speaks of, and how a cell
-// that is stated is taken into a row.
+// catalogueColumn is one column: its name, what it speaks of, how a cell that is
+// stated is taken into a row, and whether that is a number.
 type catalogueColumn struct {
-	name  string
-	scope scope
-	set   func(row *catalogueRow, text string) error
+	name   string
+	scope  scope
+	set    func(row *catalogueRow, text string) error
+	number bool
 }
 
 // catalogueColumns are the columns by name.
 var catalogueColumns = columnsByName(
-	catalogueColumn{"file", 0, (*catalogueRow).setFile},
+	catalogueColumn{name: "file", set: (*catalogueRow).setFile},
 	textColumn("event", 0, func(r *catalogueRow) *string { return &r.event }),
 	textColumn("station", 0, func(r *catalogueRow) *string { return &r.station }),
 	textColumn("network", 0, func(r *catalogueRow) *string { return &r.network }),
 	textColumn("component", 0, func(r *catalogueRow) *string { return &r.component }),
 	textColumn("event_name", scopeEvent, func(r *catalogueRow) *string { return &r.channel.Event.Name }),
-	catalogueColumn{"origin_time", scopeEvent, setOrigin},
+	catalogueColumn{name: "origin_time", scope: scopeEvent, set: setOrigin},
 	numberColumn("magnitude", scopeEvent, magnitudeLimits, func(r *catalogueRow) *Number { return &r.channel.Event.Magnitude }),
 	textColumn("magnitude_type", scopeEvent, func(r *catalogueRow) *string { return &r.channel.Event.MagnitudeType }),
 	numberColumn("depth_km", scopeEvent, depthLimits, func(r *catalogueRow) *Number { return &r.channel.Event.DepthKM }),
@@ -50,12 +51,12 @@ var catalogueColumns = columnsByName(
 	numberColumn("station_longitude", scopeStation, limits{-180, 360}, func(r *catalogueRow) *Number { return &r.channel.Station.Longitude }),
 	numberColumn("elevation_m", scopeStation, limits{-500, 9000}, func(r *catalogueRow) *Number { return &r.channel.Station.ElevationM }),
 	numberColumn("vs30_m_s", scopeStation, vs30Limits, func(r *catalogueRow) *Number { return &r.channel.Station.Vs30 }),
-	catalogueColumn{"site_class", scopeStation, setSiteClass},
+	catalogueColumn{name: "site_class", scope: scopeStation, set: setSiteClass},
 	numberColumn("azimuth_deg", scopeStation, limits{0, 360}, func(r *catalogueRow) *Number { return &r.channel.Orientation.AzimuthDeg }),
 	textColumn("instrument", scopeStation, func(r *catalogueRow) *string { return &r.channel.Instrument }),
-	catalogueColumn{"siting", scopeStation, setSiting},
-	catalogueColumn{"unit", scopeFile, setUnit},
-	catalogueColumn{"dt_s", scopeFile, setStep},
+	catalogueColumn{name: "siting", scope: scopeStation, set: setSiting},
+	catalogueColumn{name: "unit", scope: scopeFile, set: setUnit},
+	catalogueColumn{"dt_s", scopeFile, setStep, true},
 	numberColumn("low_cut_hz", scopeRecord, limits{1e-6, 1e4}, func(r *catalogueRow) *Number { return &r.channel.LowCutHz }),
 	numberColumn("high_cut_hz", scopeRecord, limits{1e-6, 1e4}, func(r *catalogueRow) *Number { return &r.channel.HighCutHz }),
 )
@@ -69,7 +70,7 @@ func columnsByName(columns ...catalogueColumn) map[string]*catalogueColumn {
 }
 
 func textColumn(name string, s scope, place func(*catalogueRow) *string) catalogueColumn {
-	return catalogueColumn{name, s, func(row *catalogueRow, text string) error {
+	return catalogueColumn{name: name, scope: s, set: func(row *catalogueRow, text string) error {
 		*place(row) = text
 		return nil
 	}}
@@ -82,7 +83,7 @@ func numberColumn(name string, s scope, l limits, place func(*catalogueRow) *Num
 			*place(row) = Known(v)
 		}
 		return err
-	}}
+	}, true}
 }
 
 func numberWithin(text string, l limits) (float64, error) {

@@ -83,6 +83,38 @@ func TestCatalogueSemicolons(t *testing.T) {
 	}
 }
 
+// TestCatalogueDecimalCommas has what spreadsheets write where the comma is the
+// decimal mark: in files with semicolons alone, in numbers alone, and never beside
+// a point, since one of the two would stand between thousands.
+func TestCatalogueDecimalCommas(t *testing.T) {
+	c := catalogueOf(t, "# Ereignisse; erfunden, alle", "file;event_name;magnitude;depth_km;vs30_m_s;dt_s;station_latitude;station_longitude;distance_km;jb_km",
+		"a.txt;Moor, Nord;5,8;12.5;410;0,005;-30,125;150,25;-999,0;7,5e1")
+	ch := Channel{DistanceKM: Known(3)}
+	c.Apply("a.txt", &ch)
+	e, s := ch.Event, ch.Station
+	if e.Name != "Moor, Nord" || e.Magnitude != Known(5.8) || e.DepthKM != Known(12.5) || s.Vs30 != Known(410) || s.Latitude != Known(-30.125) || s.Longitude != Known(150.25) {
+		t.Errorf("event %+v, station %+v", e, s)
+	}
+	if step := c.Hints("a.txt", Hints{}).StepS; step != 0.005 || ch.DistanceKM != Known(3) || ch.Distances.JoynerBooreKM != Known(75) {
+		t.Errorf("step %g, distance %+v, %+v", step, ch.DistanceKM, ch.Distances)
+	}
+	for text, want := range map[string]string{
+		"file;magnitude\na;5,8,1\n":                              `c.csv:2: magnitude: expected a number, found "5,8,1"`,
+		"file;depth_km\nb;5,8\na;1.234,5\n":                      `c.csv:3: depth_km: expected a number, found "1.234,5"`,
+		"file;depth_km\na;1234,5\n":                              `c.csv:2: depth_km: 1234.5 is outside -10 to 800`,
+		"file;depth_km\na;x,y\n":                                 `c.csv:2: depth_km: expected a number, found "x,y"`,
+		"station;station_latitude;station_longitude\nc;1,5S;2,5": `c.csv:2: station_latitude: expected a number, found "1,5S"`,
+		"file;dt_s\na;0,5\n":                                     `c.csv:2: dt_s: 0.5 is outside 0.0005 to 0.1`,
+		"file,magnitude\na,\"5,8\"\n":                            `c.csv:2: magnitude: expected a number, found "5,8"`,
+		"file;magnitude\na,5\n":                                  `c.csv:2: 1 fields, the header has 2`,
+		"file,magnitude\na;5,8;7;8;9;10;11;\n":                   `c.csv:2: magnitude: expected a number, found "8;7;8;9;10;11;"`,
+	} {
+		if _, err := ReadCatalogue("c.csv", strings.NewReader(text)); err == nil || err.Error() != want {
+			t.Errorf("%q: error %v, want %q", text, err, want)
+		}
+	}
+}
+
 func TestCatalogueErrors(t *testing.T) {
 	_, err := openCatalogue(t, "damaged-cells.csv")
 	want := []string{
