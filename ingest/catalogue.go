@@ -56,10 +56,15 @@ type UnknownColumn struct {
 
 // String returns the name and the suggestion.
 func (u UnknownColumn) String() string {
-	if u.Suggestion == "" {
-		return u.Name
+	return u.Name + didYouMean(u.Suggestion)
+}
+
+// didYouMean is what follows an unknown name for which there is a suggestion.
+func didYouMean(suggestion string) string {
+	if suggestion == "" {
+		return ""
 	}
-	return u.Name + " (did you mean " + u.Suggestion + "?)"
+	return " (did you mean " + suggestion + "?)"
 }
 
 // catalogueRow is one row. Of its channel only what the row states is set.

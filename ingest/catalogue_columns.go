@@ -170,11 +170,19 @@ func nearestColumn(name string) string {
 		return ""
 	}
 	names := slices.Sorted(maps.Keys(catalogueColumns))
-	best, fewest := "", len(name)/3+1
 	for _, known := range names {
 		if strings.HasPrefix(known, name) || strings.HasPrefix(name, known+"_") {
 			return known
 		}
+	}
+	return nearest(name, names, len(name)/3)
+}
+
+// nearest returns the first of the names that the fewest edits lead to, at most
+// so many, "" for none.
+func nearest(name string, names []string, most int) string {
+	best, fewest := "", most+1
+	for _, known := range names {
 		if n := editDistance(name, known); n < fewest {
 			best, fewest = known, n
 		}

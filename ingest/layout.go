@@ -91,19 +91,54 @@ func (ls *Layouts) Read(name string, r io.Reader) error {
 	return nil
 }
 
-// Info describes the layout.
+// Info describes the layout, and says where it leaves unit and step to flags or a
+// catalogue.
 func (l *Layout) Info() Info {
-	info := Info{Name: l.name, Title: l.title, Channels: "one", Unit: "as the layout finds it, or --unit"}
-	if unit := l.fixed[quantityKey{"unit", 0}]; unit != "" {
-		info.Unit = unit
-	}
+	info := Info{Name: l.name, Title: l.title, Channels: "one", Unit: l.units()}
 	if n := l.numbers.channels(); n > 1 {
 		info.Channels = fmt.Sprint(n)
 	}
 	if l.begin != nil {
 		info.Channels = "several"
 	}
+	timed := slices.ContainsFunc(l.numbers.columns, func(c layoutColumn) bool { return c.time })
+	if !timed && l.whence("dt_s", 0) == "" && l.whence("rate_hz", 0) == "" {
+		info.NotRead = "files without --dt or the catalogue's dt_s"
+	}
 	return info
+}
+
+// units says what the channels' units are, or who states them.
+func (l *Layout) units() string {
+	columns := l.numbers.columns
+	if l.numbers.wrapped() {
+		columns = []layoutColumn{{}}
+	}
+	var units []string
+	for _, c := range columns {
+		unit := orElse(l.whence("unit", c.number), "that of --unit or the catalogue's unit")
+		if !c.time && !slices.Contains(units, unit) {
+			units = append(units, unit)
+		}
+	}
+	return strings.Join(units, ", ")
+}
+
+// whence says what the description fixes of a quantity of the column, or that the
+// header says it, "" where neither does.
+func (l *Layout) whence(name string, column int) string {
+	header := ""
+	for _, k := range []quantityKey{{name, column}, {name, 0}} {
+		if slices.ContainsFunc(l.finds, func(f layoutFind) bool { return f.column == k.column && slices.Contains(f.gives, name) }) {
+			header = "as the header says"
+		}
+		if s, ok := l.fixed[k]; ok && header != "" {
+			return header + ", else " + s
+		} else if ok {
+			return s
+		}
+	}
+	return header
 }
 
 // channels returns how many columns hold accelerations.

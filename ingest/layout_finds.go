@@ -18,6 +18,9 @@ func (l *Layout) readFinds(t *tomlTable) {
 		}
 		if f.pattern == nil {
 			h.fail("pattern", "missing: a regular expression")
+			for _, key := range []string{"gives", "time", "zone"} {
+				h.value(key) // known, though there is nothing to hold it against
+			}
 		} else {
 			l.readGives(h, &f)
 			l.readTime(h, &f)
@@ -49,7 +52,7 @@ func (l *Layout) readGives(h *tomlTable, f *layoutFind) {
 			continue
 		}
 		if !isQuantity(name) {
-			h.fail("pattern", "unknown quantity %s; known are %s", name, strings.Join(quantityNames(), ", "))
+			h.fail("pattern", "unknown quantity %s%s; known are %s", name, didYouMean(nearestKey(name, quantityNames())), strings.Join(quantityNames(), ", "))
 		}
 		if slices.Contains(f.gives[:i], name) {
 			h.fail("pattern", "two groups named %s", name)

@@ -176,6 +176,7 @@ func (l *Layout) readColumns(t *tomlTable) {
 			l.fixAll(c, col.number)
 		default:
 			c.fail("holds", "missing: time or acceleration")
+			l.fixAll(c, col.number)
 		}
 		c.done()
 		last = max(last, col.number)

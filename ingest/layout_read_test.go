@@ -50,7 +50,9 @@ func TestLayoutMistakes(t *testing.T) {
 		{2, `recognise = [{ line = 1, first = 2, pattern = 'a' }]`, `case.toml:2: recognise.line: want either line = N or first = N, for "any of the first N lines"`},
 		{2, `recognise = [{ line = 0, pattern = 'a' }]`, `case.toml:2: recognise.line: 0 is outside 1 to 10000`},
 		{2, `recognise = [{ line = 1.5, pattern = 'a' }]`, `case.toml:2: recognise.line: expected a whole number, found a number`},
-		{2, `recognise = [{ line = 1, patern = 'a' }]`, `case.toml:2: recognise.pattern: missing: a regular expression`},
+		{2, `recognise = [{ line = 1, patern = 'a' }]`, `case.toml:2: recognise.patern: unknown key (did you mean pattern?); known are first, line, pattern`},
+		{2, `recognise = [{ line = 1 }]`, `case.toml:2: recognise.pattern: missing: a regular expression`},
+		{2, `recognize = [{ line = 1, pattern = 'a' }]`, `case.toml:2: recognize: unknown key (did you mean recognise?); known are blocks, column, data, directions, fixed, header, name, numbers, recognise, title`},
 
 		{3, ``, `case.toml: data: missing: say where the numbers begin and end`},
 		{3, `data = { open_end = true }`, `case.toml:3: data.line: want either line = N or after = a regular expression for the line before the numbers`},
@@ -60,6 +62,11 @@ func TestLayoutMistakes(t *testing.T) {
 		{3, `data = { line = 2, open_end = "yes" }`, `case.toml:3: data.open_end: expected true or false, found the text "yes"`},
 		{3, "data = { line = 2, open_end = true, from = 3 }", `case.toml:3: data.from: unknown key; known are after, comment, ends_with, line, open_end, skip, trailer`},
 
+		{3, `data = { lnie = 2, open_end = true }`, `case.toml:3: data.lnie: unknown key (did you mean line?); known are after, comment, ends_with, line, open_end, skip, trailer`},
+
+		{4, `number = { separator = "blanks" }`, `case.toml:4: number: unknown key (did you mean numbers?); known are blocks, column, data, directions, fixed, header, name, numbers, recognise, title`},
+		{4, `numbers = { separator = "fixed", width = 7, perline = 2 }`, `case.toml:4: numbers.perline: unknown key (did you mean per_line?); known are decimal, missing, per_line, separator, width, widths`},
+		{4, `numbers = { seperator = "blanks" }`, `case.toml:4: numbers.seperator: unknown key (did you mean separator?); known are decimal, missing, per_line, separator, width, widths`},
 		{4, ``, `case.toml: numbers: missing: say at least numbers.separator`},
 		{4, `numbers = {}`, `case.toml:4: numbers.separator: missing: blanks, comma, semicolon, tab or fixed`},
 		{4, `numbers = { separator = "colon" }`, `case.toml:4: numbers.separator: expected blanks, comma, semicolon, tab, fixed, found "colon"`},
@@ -74,6 +81,9 @@ func TestLayoutMistakes(t *testing.T) {
 		{5, `fixed = { unit = "m" }`, `case.toml:5: fixed.unit: "m" is a unit of length, not of acceleration`},
 		{5, `fixed = { dt_s = 2 }`, `case.toml:5: fixed.dt_s: 2 is outside 0.0005 to 0.1`},
 		{5, `fixed = { rate_hz = 0 }`, `case.toml:5: fixed.rate_hz: 0 is outside 10 to 2000`},
+		{5, `fixed = { unit = "gal", dts = 0.02 }`, `case.toml:5: fixed.dts: unknown key (did you mean dt_s?); known are ` + strings.Join(quantityNames(), ", ")},
+		{5, `fixed = { unit = "gal", pga = 0.02 }`, `case.toml:5: fixed.pga: unknown key; known are ` + strings.Join(quantityNames(), ", ")},
+		{5, `fixed = { unti = "bar", dt_s = 2 }`, `case.toml:5: fixed.dt_s: 2 is outside 0.0005 to 0.1`},
 		{5, `fixed = { scale = -1 }`, `case.toml:5: fixed.scale: expected a number over zero, found "-1"`},
 		{5, `fixed = { count = 1.5 }`, `case.toml:5: fixed.count: expected a whole number over zero, found "1.5"`},
 		{5, `fixed = { peak = "high" }`, `case.toml:5: fixed.peak: expected a number, found "high"`},
@@ -95,6 +105,9 @@ func TestLayoutMistakes(t *testing.T) {
 
 		{0, "[[header]]\npattern = 'x(.)'", `case.toml:7: header.pattern: gives nothing: name a group, as in (?P<dt_s>...), or say gives beside one group`},
 		{0, "[[header]]\npattern = 'x(?P<dt>.)'", `case.toml:7: header.pattern: unknown quantity dt; known are ` + strings.Join(quantityNames(), ", ")},
+		{0, "[[header]]\npattern = 'x(?P<statoin>.)'", `case.toml:7: header.pattern: unknown quantity statoin (did you mean station?); known are ` + strings.Join(quantityNames(), ", ")},
+		{0, "[[header]]\npatern = 'x'\ngives = \"peak\"\ntime = \"hh\"", `case.toml:7: header.patern: unknown key (did you mean pattern?); known are column, gives, in, line, optional, pattern, time, zone`},
+		{0, "[[column]]\nnumber = 1\nhold = \"acceleration\"\ndirection = \"N\"", `case.toml:8: column.hold: unknown key (did you mean holds?); known are azimuth_deg, channel, direction, holds, instrument, number, peak, scale, scale_divisor, unit`},
 		{0, "[[header]]\npattern = 'x(?P<station>.)'\ngives = \"event\"", `case.toml:8: header.gives: wants a pattern of one group in parentheses without a name`},
 		{0, "[[header]]\npattern = 'x(?P<peak>.) (?P<peak>.)'", `case.toml:7: header.pattern: two groups named peak`},
 		{0, "[[header]]\ngives = \"peak\"", `case.toml:6: header.pattern: missing: a regular expression`},
@@ -133,6 +146,35 @@ func TestLayoutMistakes(t *testing.T) {
 		}
 		if _, ok := errors.AsType[*ParseError](err); err != nil && !ok {
 			t.Errorf("%s: error of type %T", c.text, err)
+		}
+	}
+}
+
+// TestLayoutInfo has who states unit and step: the description, the header, a
+// column of times, or whoever runs the program.
+func TestLayoutInfo(t *testing.T) {
+	const flags, noStep = "that of --unit or the catalogue's unit", "files without --dt or the catalogue's dt_s"
+	begin := minimal[:4]
+	for _, c := range []struct {
+		name, text, unit, notRead string
+	}{
+		{"both fixed", `fixed = { unit = "gal", dt_s = 0.02 }`, "gal", ""},
+		{"rate fixed", `fixed = { rate_hz = 50 }`, flags, ""},
+		{"neither", ``, flags, noStep},
+		{"both found", "[[header]]\npattern = '(?P<unit>.) (?P<rate_hz>.)'", "as the header says", ""},
+		{"unit found or fixed", "fixed.unit = 'gal'\n[[header]]\npattern = '(?P<unit>.)'\noptional = true", "as the header says, else gal", noStep},
+		{"a column of times", `column = [{ number = 1, holds = "time" }, { number = 2, holds = "acceleration" }]`, flags, ""},
+		{"units by column", `column = [{ number = 1, holds = "acceleration", unit = "g", direction = "N" }, { number = 2, holds = "acceleration", unit = "mg", direction = "E" }]`, "g, mg", noStep},
+		{"one unit of two", `column = [{ number = 1, holds = "acceleration", unit = "g", direction = "N" }, { number = 2, holds = "acceleration", direction = "E" }]`, "g, " + flags, noStep},
+		{"found for one column", "column = [{ number = 2, holds = 'acceleration' }]\n[[header]]\ncolumn = 2\npattern = '(?P<unit>.)'", "as the header says", noStep},
+	} {
+		l, err := readDescription(append(begin[:4:4], c.text)...)
+		if err != nil {
+			t.Errorf("%s: %v", c.name, err)
+			continue
+		}
+		if info := l.Info(); info.Unit != c.unit || info.NotRead != c.notRead {
+			t.Errorf("%s: unit %q, not read %q, want %q, %q", c.name, info.Unit, info.NotRead, c.unit, c.notRead)
 		}
 	}
 }

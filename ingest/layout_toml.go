@@ -31,6 +31,8 @@ type tomlTable struct {
 type tomlDocument struct {
 	lines map[string]int // of keys and tables by path
 	err   error          // the first mistake, a *ParseError without path
+	// lacking is the table in which that is a missing key, nil for another mistake.
+	lacking *tomlTable
 }
 
 // parseTOML reads a document. The error is a *ParseError without path.
@@ -147,8 +149,13 @@ func (d *tomlDocument) line(path string) int {
 // fail keeps the first mistake, at a key of the table or, where key is "", at
 // the table itself.
 func (t *tomlTable) fail(key, format string, args ...any) {
-	if t.document.err == nil {
-		t.document.err = refuse(t.document.line(join(t.path, key)), strings.TrimPrefix(t.name+"."+key, "."), format, args...)
+	d := t.document
+	if d.err != nil {
+		return
+	}
+	d.err = refuse(d.line(join(t.path, key)), strings.TrimPrefix(t.name+"."+key, "."), format, args...)
+	if !t.has(key) {
+		d.lacking = t
 	}
 }
 
@@ -279,13 +286,25 @@ func (t *tomlTable) pattern(key string) *linePattern {
 	return newLinePattern(re)
 }
 
-// done refuses keys that nobody asked for.
+// done refuses keys that nobody asked for. Where another key is missing this is
+// the mistake to tell, since it may be that one.
 func (t *tomlTable) done() {
+	known := slices.Sorted(maps.Keys(t.asked))
 	for _, key := range slices.Sorted(maps.Keys(t.values)) {
-		if !t.asked[key] {
-			t.fail(key, "unknown key; known are %s", strings.Join(slices.Sorted(maps.Keys(t.asked)), ", "))
+		if t.asked[key] {
+			continue
 		}
+		if t.document.lacking == t {
+			t.document.err, t.document.lacking = nil, nil
+		}
+		t.fail(key, "unknown key%s; known are %s", didYouMean(nearestKey(key, known)), strings.Join(known, ", "))
 	}
+}
+
+// nearestKey returns the known key that is two edits away at most, and no more than
+// half of the letters; "" for none.
+func nearestKey(key string, known []string) string {
+	return nearest(key, known, min(2, len(key)/2))
 }
 
 // tomlKind names the kind of a value for messages.
