@@ -1,17 +1,14 @@
 package ingest
 
 import (
-	"archive/tar"
-	"archive/zip"
 	"bytes"
-	"compress/gzip"
-	"errors"
 	"fmt"
 	"math"
 	"strings"
 	"testing"
 
 	"swaybook/ingest/archive"
+	"swaybook/ingest/archive/archivetest"
 )
 
 // benchSamples is how many samples a channel of the benchmarks' files has.
@@ -93,14 +90,14 @@ func BenchmarkParse(b *testing.B) {
 func BenchmarkParseArchive(b *testing.B) {
 	const n = 8
 	data := benchFiles(b)["at2"]
-	tarred := benchTar(b, data, n)
+	tarred := archivetest.Tar(timesOver(n, data)...)
 	for _, c := range []struct {
 		name    string
 		content []byte
 		members int
 	}{
-		{"zip", benchZip(b, data, n), n}, {"tar", tarred, n}, {"tar.gz", benchGzip(b, tarred), n}, {"gz", benchGzip(b, data), 1},
-		{"tar.gz in a zip", benchZip(b, benchGzip(b, tarred), 1), n},
+		{"zip", archivetest.Zip(timesOver(n, data)...), n}, {"tar", tarred, n}, {"tar.gz", archivetest.Gzip(tarred), n}, {"gz", archivetest.Gzip(data), 1},
+		{"tar.gz in a zip", archivetest.Zip(timesOver(1, archivetest.Gzip(tarred))...), n},
 	} {
 		b.Run(c.name, func(b *testing.B) {
 			b.SetBytes(int64(c.members * len(data)))
@@ -125,51 +122,11 @@ func BenchmarkParseArchive(b *testing.B) {
 	}
 }
 
-func benchZip(b *testing.B, data []byte, n int) []byte {
-	b.Helper()
-	var out bytes.Buffer
-	z := zip.NewWriter(&out)
+// timesOver are so many members of one content.
+func timesOver(n int, data []byte) []archivetest.Member {
+	var members []archivetest.Member
 	for i := range n {
-		w, err := z.Create(fmt.Sprint(i))
-		if err == nil {
-			_, err = w.Write(data)
-		}
-		if err != nil {
-			b.Fatal(err)
-		}
+		members = append(members, archivetest.File(fmt.Sprint(i), string(data)))
 	}
-	if err := z.Close(); err != nil {
-		b.Fatal(err)
-	}
-	return out.Bytes()
-}
-
-func benchTar(b *testing.B, data []byte, n int) []byte {
-	b.Helper()
-	var out bytes.Buffer
-	w := tar.NewWriter(&out)
-	for i := range n {
-		err := w.WriteHeader(&tar.Header{Name: fmt.Sprint(i), Typeflag: tar.TypeReg, Size: int64(len(data)), Mode: 0o644})
-		if err == nil {
-			_, err = w.Write(data)
-		}
-		if err != nil {
-			b.Fatal(err)
-		}
-	}
-	if err := w.Close(); err != nil {
-		b.Fatal(err)
-	}
-	return out.Bytes()
-}
-
-func benchGzip(b *testing.B, data []byte) []byte {
-	b.Helper()
-	var out bytes.Buffer
-	w := gzip.NewWriter(&out)
-	_, err := w.Write(data)
-	if err := errors.Join(err, w.Close()); err != nil {
-		b.Fatal(err)
-	}
-	return out.Bytes()
+	return members
 }

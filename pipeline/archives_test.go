@@ -1,75 +1,27 @@
 package pipeline
 
 import (
-	"archive/tar"
 	"archive/zip"
-	"bytes"
-	"compress/gzip"
 	"context"
 	"errors"
 	"fmt"
-	"io"
 	"os"
 	"path/filepath"
 	"slices"
 	"strings"
 	"testing"
+	"time"
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/ingest/archive/archivetest"
 )
 
-// packed is a file to put into an archive.
-type packed struct{ name, content string }
+func packed(name, content string) archivetest.Member { return archivetest.File(name, content) }
 
-func zipOf(t testing.TB, files ...packed) string {
-	t.Helper()
-	var b bytes.Buffer
-	z := zip.NewWriter(&b)
-	for _, f := range files {
-		w, err := z.Create(f.name)
-		if err == nil {
-			_, err = io.WriteString(w, f.content)
-		}
-		if err != nil {
-			t.Fatal(err)
-		}
-	}
-	if err := z.Close(); err != nil {
-		t.Fatal(err)
-	}
-	return b.String()
-}
-
-func tarOf(t testing.TB, files ...packed) string {
-	t.Helper()
-	var b bytes.Buffer
-	w := tar.NewWriter(&b)
-	for _, f := range files {
-		err := w.WriteHeader(&tar.Header{Name: f.name, Typeflag: tar.TypeReg, Size: int64(len(f.content)), Mode: 0o644})
-		if err == nil {
-			_, err = io.WriteString(w, f.content)
-		}
-		if err != nil {
-			t.Fatal(err)
-		}
-	}
-	if err := w.Close(); err != nil {
-		t.Fatal(err)
-	}
-	return b.String()
-}
-
-func gzipOf(t testing.TB, content string) string {
-	t.Helper()
-	var b bytes.Buffer
-	w := gzip.NewWriter(&b)
-	_, err := io.WriteString(w, content)
-	if err := errors.Join(err, w.Close()); err != nil {
-		t.Fatal(err)
-	}
-	return b.String()
-}
+func zipOf(members ...archivetest.Member) string { return string(archivetest.Zip(members...)) }
+func tarOf(members ...archivetest.Member) string { return string(archivetest.Tar(members...)) }
+func gzipOf(content string) string               { return string(archivetest.Gzip([]byte(content))) }
 
 // anonymous is an invented record whose file says nothing of event and station.
 func anonymous(seed int) string {
@@ -83,31 +35,31 @@ func anonymous(seed int) string {
 
 // unpackedTree is records in folders, with and without identity, some of equal
 // names.
-func unpackedTree() []packed {
-	return []packed{
-		{"EV1/run1.csv", anonymous(7)}, {"EV1/ST0000.AT2", at2("Invented", "Site 00", "000", 1)}, {"EV1/ST0090.AT2", at2("Invented", "Site 00", "090", 2)},
-		{"EV2/run1.csv", anonymous(11)}, {"EV2/README.txt", "Invented."}, {"EV2/sub/run1.csv", anonymous(13)},
-		{"EV3/deep/run1.csv", anonymous(17)}, {"EV3/deep/run2.csv", anonymous(19)},
-		{"EV4/ST01UP.AT2", at2("Invented", "Site 01", "UP", 3)}, {"EV4/ST01000.AT2", at2("Invented", "Site 01", "000", 4)},
-		{"EV5/run1.csv", anonymous(23)}, {"z_N.csv", anonymous(29)}, {"z_E.csv", anonymous(31)},
+func unpackedTree() []archivetest.Member {
+	return []archivetest.Member{
+		packed("EV1/run1.csv", anonymous(7)), packed("EV1/ST0000.AT2", at2("Invented", "Site 00", "000", 1)), packed("EV1/ST0090.AT2", at2("Invented", "Site 00", "090", 2)),
+		packed("EV2/run1.csv", anonymous(11)), packed("EV2/README.txt", "Invented."), packed("EV2/sub/run1.csv", anonymous(13)),
+		packed("EV3/deep/run1.csv", anonymous(17)), packed("EV3/deep/run2.csv", anonymous(19)),
+		packed("EV4/ST01UP.AT2", at2("Invented", "Site 01", "UP", 3)), packed("EV4/ST01000.AT2", at2("Invented", "Site 01", "000", 4)),
+		packed("EV5/run1.csv", anonymous(23)), packed("z_N.csv", anonymous(29)), packed("z_E.csv", anonymous(31)),
 	}
 }
 
 // mixedTree is the same with archives where files or folders were.
-func mixedTree(t testing.TB) []packed {
+func mixedTree() []archivetest.Member {
 	u := unpackedTree()
-	return []packed{
-		{"EV1/all.tar", tarOf(t, packed{"run1.csv", u[0].content}, packed{"ST0000.AT2", u[1].content}, packed{"ST0090.AT2", u[2].content})},
-		{"EV2.tar.gz", gzipOf(t, tarOf(t, u[3:6]...))},
-		{"EV3/deep/run1.csv.gz", gzipOf(t, u[6].content)}, u[7],
-		{"EV4.zip", zipOf(t, u[9], u[8])}, {"EV5/" + "one.zip", zipOf(t, packed{"run1.csv", u[10].content})}, u[11], u[12],
+	return []archivetest.Member{
+		packed("EV1/all.tar", tarOf(packed("run1.csv", u[0].Content), packed("ST0000.AT2", u[1].Content), packed("ST0090.AT2", u[2].Content))),
+		packed("EV2.tar.gz", gzipOf(tarOf(u[3:6]...))),
+		packed("EV3/deep/run1.csv.gz", gzipOf(u[6].Content)), u[7],
+		packed("EV4.zip", zipOf(u[9], u[8])), packed("EV5/"+"one.zip", zipOf(packed("run1.csv", u[10].Content))), u[11], u[12],
 	}
 }
 
-func putAll(t testing.TB, dir string, files []packed) {
+func putAll(t testing.TB, dir string, files []archivetest.Member) {
 	t.Helper()
 	for _, f := range files {
-		put(t, dir, f.name, f.content)
+		put(t, dir, f.Name, f.Content)
 	}
 }
 
@@ -116,11 +68,11 @@ func putAll(t testing.TB, dir string, files []packed) {
 func TestArchivesGiveWhatTheirFilesGive(t *testing.T) {
 	unpacked, mixed, zipped, tarred := t.TempDir(), t.TempDir(), t.TempDir(), t.TempDir()
 	putAll(t, unpacked, unpackedTree())
-	putAll(t, mixed, mixedTree(t))
-	shuffled := mixedTree(t)
+	putAll(t, mixed, mixedTree())
+	shuffled := mixedTree()
 	slices.Reverse(shuffled)
-	put(t, zipped, "all.zip", zipOf(t, shuffled...))
-	put(t, tarred, "all.tgz", gzipOf(t, tarOf(t, mixedTree(t)...)))
+	put(t, zipped, "all.zip", zipOf(shuffled...))
+	put(t, tarred, "all.tgz", gzipOf(tarOf(mixedTree()...)))
 
 	store := newStore(t)
 	want := Summary{Files: 13, Stored: 12, StoredFiles: 12, Skipped: 1, Records: 9, Rotated: 2}
@@ -159,18 +111,18 @@ func TestDocumentsInArchives(t *testing.T) {
 	}
 	record, stations, events := fixture("three-channels.mseed"), fixture("station.xml"), fixture("events.xml")
 	broken := stations[:len(stations)/2]
-	files := []packed{{"a/record.mseed", record}, {"b/broken.xml", broken}, {"b/other.xml", "<?xml version=\"1.0\"?><invented/>"}, {"b/station.xml", stations}, {"events.XML", events}}
-	last := []packed{files[0], files[4], files[3], files[2], files[1]}
-	inside := func(outer func(testing.TB, ...packed) string, inner string) string {
-		return outer(t, files[0], files[1], files[2], packed{inner, zipOf(t, packed{"b/station.xml", stations})}, files[4])
+	files := []archivetest.Member{packed("a/record.mseed", record), packed("b/broken.xml", broken), packed("b/other.xml", "<?xml version=\"1.0\"?><invented/>"), packed("b/station.xml", stations), packed("events.XML", events)}
+	last := []archivetest.Member{files[0], files[4], files[3], files[2], files[1]}
+	inside := func(outer func(...archivetest.Member) string, inner string) string {
+		return outer(files[0], files[1], files[2], packed(inner, zipOf(packed("b/station.xml", stations))), files[4])
 	}
-	ways := map[string][]packed{
-		"zip":                        {{"all.zip", zipOf(t, files...)}},
-		"tar.gz":                     {{"all.tar.gz", gzipOf(t, tarOf(t, last...))}},
-		"tar of a zip":               {{"all.tar", inside(tarOf, "b.zip")}},
-		"zip of a zip":               {{"all.zip", inside(zipOf, "b.zip")}},
-		"a document under gz":        {{"a.zip", zipOf(t, files[:3]...)}, {"b/station.xml.gz", gzipOf(t, stations)}, files[4]},
-		"record and documents apart": {{"a.zip", zipOf(t, files[0])}, {"b.tgz", gzipOf(t, tarOf(t, files[1:]...))}},
+	ways := map[string][]archivetest.Member{
+		"zip":                        {packed("all.zip", zipOf(files...))},
+		"tar.gz":                     {packed("all.tar.gz", gzipOf(tarOf(last...)))},
+		"tar of a zip":               {packed("all.tar", inside(tarOf, "b.zip"))},
+		"zip of a zip":               {packed("all.zip", inside(zipOf, "b.zip"))},
+		"a document under gz":        {packed("a.zip", zipOf(files[:3]...)), packed("b/station.xml.gz", gzipOf(stations)), files[4]},
+		"record and documents apart": {packed("a.zip", zipOf(files[0])), packed("b.tgz", gzipOf(tarOf(files[1:]...)))},
 	}
 	unpacked := t.TempDir()
 	putAll(t, unpacked, files)
@@ -197,7 +149,7 @@ func TestDocumentsInArchives(t *testing.T) {
 	// By its name nothing says that this is an archive: its record is read, and waits
 	// for metadata.
 	dir := t.TempDir()
-	put(t, dir, "download", zipOf(t, files...))
+	put(t, dir, "download", zipOf(files...))
 	if got := run(t, newStore(t), options(dir)); got.Stored != 0 || got.Rejected != 1 || got.Skipped != 4 {
 		t.Errorf("in an archive without a suffix: %+v", got)
 	}
@@ -206,7 +158,7 @@ func TestDocumentsInArchives(t *testing.T) {
 // What documents in archives say is bounded by their bytes, since it is held.
 func TestDocumentsInArchivesAreBounded(t *testing.T) {
 	dir := t.TempDir()
-	put(t, dir, "a.zip", zipOf(t, packed{"1.xml", "<?xml version=\"1.0\"?><a/>"}, packed{"2.xml", "<b/>"}, packed{"3.V2", "invented"}))
+	put(t, dir, "a.zip", zipOf(packed("1.xml", "<?xml version=\"1.0\"?><a/>"), packed("2.xml", "<b/>"), packed("3.V2", "invented")))
 	file := ingest.Found{Path: filepath.Join(dir, "a.zip"), Rel: "a.zip"}
 	for left, want := range map[int]string{100: "", 26: "2.xml", 10: "1.xml 2.xml"} {
 		src := newSource([]ingest.Found{file}, nil)
@@ -239,14 +191,14 @@ func faultIn(t *testing.T, store *db.Store, suffix string) string {
 // Sources, rejections and skipped files say in which archive they lie.
 func TestPathsInArchives(t *testing.T) {
 	dir, store := t.TempDir(), newStore(t)
-	cut := tarOf(t, packed{"good.csv", anonymous(5)}, packed{"cut.csv", anonymous(6)})
-	put(t, dir, "a.zip", zipOf(t, packed{"__MACOSX/._x.csv", "\x00"}, packed{".git/x.csv", "x"}, packed{"README", "x"}, packed{"d/bad.txt", "no record"},
-		packed{"i.tgz", gzipOf(t, tarOf(t, packed{"x.csv", anonymous(3)}))}, packed{"deep.zip", zipOf(t, packed{"b.zip", zipOf(t, packed{"x", "x"})})}))
+	cut := tarOf(packed("good.csv", anonymous(5)), packed("cut.csv", anonymous(6)))
+	put(t, dir, "a.zip", zipOf(packed("__MACOSX/._x.csv", "\x00"), packed(".git/x.csv", "x"), packed("README", "x"), packed("d/bad.txt", "no record"),
+		packed("i.tgz", gzipOf(tarOf(packed("x.csv", anonymous(3))))), packed("deep.zip", zipOf(packed("b.zip", zipOf(packed("x", "x")))))))
 	put(t, dir, "b.tar", cut[:2*512+len(anonymous(5))+512])
-	put(t, dir, "c.csv.gz", gzipOf(t, anonymous(4)))
-	put(t, dir, "d.zip", zipOf(t))
+	put(t, dir, "c.csv.gz", gzipOf(anonymous(4)))
+	put(t, dir, "d.zip", zipOf())
 	put(t, dir, "e.csv", anonymous(8))
-	put(t, dir, "f.xlsx", zipOf(t, packed{"[Content_Types].xml", "<?xml"}))
+	put(t, dir, "f.xlsx", zipOf(packed("[Content_Types].xml", "<?xml")))
 	var got []string
 	opts := options(dir)
 	opts.Progress = func(p Progress) {
@@ -288,8 +240,8 @@ func TestPathsInArchives(t *testing.T) {
 // other does.
 func TestAMendedArchiveLosesItsRejections(t *testing.T) {
 	dir, store := t.TempDir(), newStore(t)
-	inner := tarOf(t, packed{"x.csv", anonymous(3)})
-	put(t, dir, "a.zip", zipOf(t, packed{"i.tar", inner[:700]}, packed{"bad.txt", "no record"}))
+	inner := tarOf(packed("x.csv", anonymous(3)))
+	put(t, dir, "a.zip", zipOf(packed("i.tar", inner[:700]), packed("bad.txt", "no record")))
 	put(t, dir, "a.zip2.tar", inner[:700])
 	causes := func() (out []string) {
 		rejections, err := store.Rejections(t.Context())
@@ -309,7 +261,7 @@ func TestAMendedArchiveLosesItsRejections(t *testing.T) {
 			t.Errorf("rejections = %v", got)
 		}
 	}
-	put(t, dir, "a.zip", zipOf(t, packed{"i.tar", inner}))
+	put(t, dir, "a.zip", zipOf(packed("i.tar", inner)))
 	if got := run(t, store, options(filepath.Join(dir, "a.zip"))); got.Rejected != 0 || got.Stored != 1 || got.Files != 1 {
 		t.Errorf("run = %+v", got)
 	}
@@ -320,12 +272,12 @@ func TestAMendedArchiveLosesItsRejections(t *testing.T) {
 
 // A stop within an archive keeps whole batches; the next run reads the rest.
 func TestAStopWithinAnArchive(t *testing.T) {
-	var files []packed
+	var files []archivetest.Member
 	for i := range 200 {
-		files = append(files, packed{fmt.Sprintf("ST%03d000.AT2", i), at2("Invented", fmt.Sprintf("Site %03d", i), "000", uint64(i))})
+		files = append(files, packed(fmt.Sprintf("ST%03d000.AT2", i), at2("Invented", fmt.Sprintf("Site %03d", i), "000", uint64(i))))
 	}
 	dir, store := t.TempDir(), newStore(t)
-	put(t, dir, "a.tar.gz", gzipOf(t, tarOf(t, files...)))
+	put(t, dir, "a.tar.gz", gzipOf(tarOf(files...)))
 	ctx, cancel := context.WithCancel(t.Context())
 	defer cancel()
 	opts := options(dir)
@@ -342,8 +294,9 @@ func TestAStopWithinAnArchive(t *testing.T) {
 // The run's own files are not opened, and what cannot be read is no archive.
 func TestSourceOpensWhatItMay(t *testing.T) {
 	dir := t.TempDir()
-	put(t, dir, "own.zip", zipOf(t, packed{"x", "x"}))
-	put(t, dir, "b.zip", zipOf(t, packed{"x", "x"}))
+	untimed := string(archivetest.ZipWith(func(h *zip.FileHeader) { h.Modified = time.Time{} }, packed("x", "x")))
+	put(t, dir, "own.zip", untimed)
+	put(t, dir, "b.zip", untimed)
 	own, gone := filepath.Join(dir, "own.zip"), filepath.Join(dir, "gone.zip")
 	src := newSource([]ingest.Found{{Path: own, Rel: "own.zip"}, {Path: gone, Rel: "gone.zip"}, {Path: filepath.Join(dir, "b.zip"), Rel: "b.zip"}}, map[string]string{own: "own"})
 	var got []string
@@ -371,7 +324,7 @@ func TestSourceOpensWhatItMay(t *testing.T) {
 func TestTheCatalogueDescribesMembers(t *testing.T) {
 	for _, pattern := range []string{"x.csv", "*.csv", "d/x.csv", "i.tar!d/x.csv", "sub/a.zip!i.tar!d/x.csv", "sub/d/x.csv", "sub/*!*!d/*"} {
 		dir, store := t.TempDir(), newStore(t)
-		put(t, dir, "sub/a.zip", zipOf(t, packed{"i.tar", tarOf(t, packed{"d/x.csv", anonymous(3)})}))
+		put(t, dir, "sub/a.zip", zipOf(packed("i.tar", tarOf(packed("d/x.csv", anonymous(3))))))
 		opts := options(dir)
 		opts.Catalogue = catalogue(t, "file,distance_km\n"+pattern+",7.7\n")
 		run(t, store, opts)

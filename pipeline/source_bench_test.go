@@ -6,6 +6,7 @@ import (
 	"testing"
 
 	"swaybook/ingest"
+	"swaybook/ingest/archive/archivetest"
 )
 
 // BenchmarkSource goes through files that are no archives, and through the same in
@@ -14,16 +15,16 @@ import (
 func BenchmarkSource(b *testing.B) {
 	const n = 300
 	dir := b.TempDir()
-	var files []packed
+	var files []archivetest.Member
 	var found []ingest.Found
 	for i := range n {
-		f := packed{fmt.Sprintf("%03d.AT2", i), at2Of("Invented", "Site", "000", 0.005, 8000, uint64(i))}
-		put(b, dir, f.name, f.content)
+		f := packed(fmt.Sprintf("%03d.AT2", i), at2Of("Invented", "Site", "000", 0.005, 8000, uint64(i)))
+		put(b, dir, f.Name, f.Content)
 		files = append(files, f)
-		found = append(found, ingest.Found{Path: filepath.Join(dir, f.name), Rel: f.name})
+		found = append(found, ingest.Found{Path: filepath.Join(dir, f.Name), Rel: f.Name})
 	}
 	cases := map[string][]ingest.Found{"files": found}
-	for name, content := range map[string]string{"zip": zipOf(b, files...), "tar": tarOf(b, files...), "tar.gz": gzipOf(b, tarOf(b, files...))} {
+	for name, content := range map[string]string{"zip": zipOf(files...), "tar": tarOf(files...), "tar.gz": gzipOf(tarOf(files...))} {
 		put(b, dir, "all."+name, content)
 		cases[name] = []ingest.Found{{Path: filepath.Join(dir, "all."+name), Rel: "all." + name}}
 	}

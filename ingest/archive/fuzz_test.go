@@ -10,6 +10,8 @@ import (
 	"testing"
 	"unicode"
 	"unicode/utf8"
+
+	"swaybook/ingest/archive/archivetest"
 )
 
 // FuzzArchive holds Members to what it owes on any bytes: no panic, the input
@@ -17,13 +19,13 @@ import (
 // no more content than the limits allow, memory bounded by the input, and nothing
 // behind the error of the archive itself.
 func FuzzArchive(f *testing.F) {
-	a, b := file{"a.V2", "invented"}, file{"sub/../b.V2", strings.Repeat("0.25 ", 100)}
-	tarred := tarOf(f, a, b)
+	a, b := file("a.V2", "invented"), file("sub/../b.V2", strings.Repeat("0.25 ", 100))
+	tarred := archivetest.Tar(a, b)
 	for _, data := range [][]byte{
-		zipOf(f, a, b), tarred, gzipOf(f, tarred), gzipOf(f, []byte(b.content)), zipOf(f, a, a), zipOf(f), tarred[:700],
-		zipOf(f, file{"i.tar.gz", string(gzipOf(f, tarred))}), tarOf(f, file{"i.zip", string(zipOf(f, a, b))}),
-		gzipOf(f, gzipOf(f, gzipOf(f, nil))), zipOf(f, file{"z", strings.Repeat("\x00", 1<<18)}),
-		tarWith(f, func(h *tar.Header) { h.Typeflag, h.Linkname, h.Size = tar.TypeLink, "../a", 0 }, file{"l", ""}),
+		archivetest.Zip(a, b), tarred, archivetest.Gzip(tarred), archivetest.Gzip([]byte(b.Content)), archivetest.Zip(a, a), archivetest.Zip(), tarred[:700],
+		archivetest.Zip(file("i.tar.gz", string(archivetest.Gzip(tarred)))), archivetest.Tar(file("i.zip", string(archivetest.Zip(a, b)))),
+		archivetest.Gzip(archivetest.Gzip(archivetest.Gzip(nil))), archivetest.Zip(file("z", strings.Repeat("\x00", 1<<18))),
+		archivetest.TarWith(func(h *tar.Header) { h.Typeflag, h.Linkname, h.Size = tar.TypeLink, "../a", 0 }, file("l", "")),
 		decoded(f, madeZip64), decoded(f, madeEncrypted), decoded(f, madeBzip2), decoded(f, madeTarBzip2), decoded(f, madeOldTar),
 		decoded(f, madeSparse), decoded(f, madeSparsePAX),
 	} {

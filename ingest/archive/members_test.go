@@ -11,6 +11,8 @@ import (
 	"runtime"
 	"strings"
 	"testing"
+
+	"swaybook/ingest/archive/archivetest"
 )
 
 // Archives that other tools made of one invented file of eight bytes.
@@ -30,35 +32,35 @@ const (
 )
 
 func TestMembers(t *testing.T) {
-	abc := []file{{"c/3.V2", "three"}, {"1.V2", "one"}, {"a.V2", "two"}}
+	abc := []archivetest.Member{file("c/3.V2", "three"), file("1.V2", "one"), file("a.V2", "two")}
 	const sorted = "1.V2=one\na.V2=two\nc/3.V2=three"
 	const asTheyLie = "c/3.V2=three\n1.V2=one\na.V2=two"
-	inner := gzipOf(t, tarOf(t, abc...))
+	inner := archivetest.Gzip(archivetest.Tar(abc...))
 	for _, tt := range []struct {
 		name, base string
 		data       []byte
 		want       string
 	}{
-		{"zip, unsorted", "a.zip", zipOf(t, abc...), sorted},
-		{"zip, stored", "a.zip", zipWith(t, func(h *zip.FileHeader) { h.Method = zip.Store }, abc...), sorted},
+		{"zip, unsorted", "a.zip", archivetest.Zip(abc...), sorted},
+		{"zip, stored", "a.zip", archivetest.ZipWith(func(h *zip.FileHeader) { h.Method = zip.Store }, abc...), sorted},
 		{"zip, 64-bit sizes", "a.zip", decoded(t, madeZip64), "-=invented"},
-		{"tar", "a.tar", tarOf(t, abc...), asTheyLie},
+		{"tar", "a.tar", archivetest.Tar(abc...), asTheyLie},
 		{"tar of the oldest form, gzip", "a.tar.gz", decoded(t, madeOldTar), "a.txt=invented"},
-		{"tar.gz", "a.tgz", gzipOf(t, tarOf(t, abc...)), asTheyLie},
+		{"tar.gz", "a.tgz", archivetest.Gzip(archivetest.Tar(abc...)), asTheyLie},
 		{"tar.bz2", "a.tbz", decoded(t, madeTarBzip2), "a.txt=invented"},
-		{"gz", "x.V2.gz", gzipOf(t, []byte("one")), "x.V2=one"},
-		{"gz in two parts", "x.V2.gz", append(gzipOf(t, []byte("one")), gzipOf(t, []byte("two"))...), "x.V2=onetwo"},
-		{"gz of nothing", "x.V2.GZ", gzipOf(t, nil), "x.V2="},
-		{"gz without the suffix", "x.V2", gzipOf(t, []byte("one")), "x.V2=one"},
-		{"gz with nothing but the suffix", ".gz", gzipOf(t, []byte("one")), ".gz=one"},
+		{"gz", "x.V2.gz", archivetest.Gzip([]byte("one")), "x.V2=one"},
+		{"gz in two parts", "x.V2.gz", append(archivetest.Gzip([]byte("one")), archivetest.Gzip([]byte("two"))...), "x.V2=onetwo"},
+		{"gz of nothing", "x.V2.GZ", archivetest.Gzip(nil), "x.V2="},
+		{"gz without the suffix", "x.V2", archivetest.Gzip([]byte("one")), "x.V2=one"},
+		{"gz with nothing but the suffix", ".gz", archivetest.Gzip([]byte("one")), ".gz=one"},
 		{"bz2", "x.V2.bz2", decoded(t, madeBzip2), "x.V2=invented"},
-		{"zip of tar.gz", "a.zip", zipOf(t, file{"b/i.tgz", string(inner)}, file{"a", "x"}), "a=x\nb/i.tgz!c/3.V2=three\nb/i.tgz!1.V2=one\nb/i.tgz!a.V2=two"},
-		{"tar.gz of zip", "a.tgz", gzipOf(t, tarOf(t, file{"i.zip", string(zipOf(t, abc...))})), "i.zip!1.V2=one\ni.zip!a.V2=two\ni.zip!c/3.V2=three"},
-		{"zip of gz", "a.zip", zipOf(t, file{"d/x.V2.gz", string(gzipOf(t, []byte("one")))}), "d/x.V2.gz!x.V2=one"},
-		{"zip under gz", "a.zip.gz", gzipOf(t, zipOf(t, abc[0])), "a.zip!c/3.V2=three"},
-		{"folders are passed over", "a.zip", zipOf(t, file{"d/", ""}, file{`e\`, ""}, file{"d/x", "1"}), "d/x=1"},
-		{"an office document", "a.xlsx", zipOf(t, file{"[Content_Types].xml", "<?xml"}, file{"xl/a.xml", "<?xml"}), "~an office document, not a record"},
-		{"an office document in an archive", "a.zip", zipOf(t, file{"b.docx", string(zipOf(t, file{"[Content_Types].xml", "<?xml"}))}), "b.docx~an office document, not a record"},
+		{"zip of tar.gz", "a.zip", archivetest.Zip(file("b/i.tgz", string(inner)), file("a", "x")), "a=x\nb/i.tgz!c/3.V2=three\nb/i.tgz!1.V2=one\nb/i.tgz!a.V2=two"},
+		{"tar.gz of zip", "a.tgz", archivetest.Gzip(archivetest.Tar(file("i.zip", string(archivetest.Zip(abc...))))), "i.zip!1.V2=one\ni.zip!a.V2=two\ni.zip!c/3.V2=three"},
+		{"zip of gz", "a.zip", archivetest.Zip(file("d/x.V2.gz", string(archivetest.Gzip([]byte("one"))))), "d/x.V2.gz!x.V2=one"},
+		{"zip under gz", "a.zip.gz", archivetest.Gzip(archivetest.Zip(abc[0])), "a.zip!c/3.V2=three"},
+		{"folders are passed over", "a.zip", archivetest.Zip(file("d/", ""), file(`e\`, ""), file("d/x", "1")), "d/x=1"},
+		{"an office document", "a.xlsx", archivetest.Zip(file("[Content_Types].xml", "<?xml"), file("xl/a.xml", "<?xml")), "~an office document, not a record"},
+		{"an office document in an archive", "a.zip", archivetest.Zip(file("b.docx", string(archivetest.Zip(file("[Content_Types].xml", "<?xml"))))), "b.docx~an office document, not a record"},
 		{"no archive", "a.zip", []byte("PK invented"), "!no archive: read in place are " + Opened},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
@@ -71,9 +73,9 @@ func TestMembers(t *testing.T) {
 
 // A member says when it was last changed, in every kind of archive.
 func TestMembersSayTheirTime(t *testing.T) {
-	for name, data := range map[string][]byte{"zip": zipOf(t, file{"a", "x"}), "tar": tarOf(t, file{"a", "x"})} {
+	for name, data := range map[string][]byte{"zip": archivetest.Zip(file("a", "x")), "tar": archivetest.Tar(file("a", "x"))} {
 		for m, err := range Members(t.Context(), bytes.NewReader(data), int64(len(data)), "a", Options{Limits: testLimits()}) {
-			if err != nil || !m.Modified.Equal(packedAt) {
+			if err != nil || !m.Modified.Equal(archivetest.PackedAt) {
 				t.Errorf("%s: time %v, %v", name, m.Modified, err)
 			}
 		}
@@ -104,7 +106,7 @@ func TestRefusedMembers(t *testing.T) {
 			h.SetMode(fs.ModeDevice)
 		}
 	}
-	otherMethod := bytes.ReplaceAll(zipWith(t, func(h *zip.FileHeader) { h.Method = zip.Store }, file{"a", "x"}), []byte("PK\x01\x02\x14\x00\x14\x00\x08\x00\x00\x00"), []byte("PK\x01\x02\x14\x00\x14\x00\x08\x00\x09\x00"))
+	otherMethod := bytes.ReplaceAll(archivetest.ZipWith(func(h *zip.FileHeader) { h.Method = zip.Store }, file("a", "x")), []byte("PK\x01\x02\x14\x00\x14\x00\x08\x00\x00\x00"), []byte("PK\x01\x02\x14\x00\x14\x00\x08\x00\x09\x00"))
 	for _, tt := range []struct {
 		name string
 		data []byte
@@ -112,17 +114,17 @@ func TestRefusedMembers(t *testing.T) {
 	}{
 		{"encrypted", decoded(t, madeEncrypted), "a.txt!encrypted: unpack it with its password"},
 		{"unknown method", otherMethod, "a!compressed by method 9, which is not read: unpack it"},
-		{"too large in zip", zipOf(t, file{"a", "123456"}, file{"b", "12345"}), "a!larger than the limit of 5 bytes\nb=12345"},
-		{"too large in tar", tarOf(t, file{"a", "123456"}, file{"b", "12345"}), "a!larger than the limit of 5 bytes\nb=12345"},
-		{"too large under gzip", gzipOf(t, []byte("123456")), "a!larger than the limit of 5 bytes"},
-		{"links and devices in tar", tarWith(t, linked, file{"a", "x"}, file{"link", ""}, file{"hard", ""}, file{"device", ""}, file{"folder/", ""}, file{"z", "y"}),
+		{"too large in zip", archivetest.Zip(file("a", "123456"), file("b", "12345")), "a!larger than the limit of 5 bytes\nb=12345"},
+		{"too large in tar", archivetest.Tar(file("a", "123456"), file("b", "12345")), "a!larger than the limit of 5 bytes\nb=12345"},
+		{"too large under gzip", archivetest.Gzip([]byte("123456")), "a!larger than the limit of 5 bytes"},
+		{"links and devices in tar", archivetest.TarWith(linked, file("a", "x"), file("link", ""), file("hard", ""), file("device", ""), file("folder/", ""), file("z", "y")),
 			"a=x\nlink~a link to x\nhard~a link to a\nz=y"},
-		{"links and devices in zip", zipWith(t, zipLinked, file{"a", "x"}, file{"b", "../x"}, file{"c", ""}), "a=x\nb~a link"},
+		{"links and devices in zip", archivetest.ZipWith(zipLinked, file("a", "x"), file("b", "../x"), file("c", "")), "a=x\nb~a link"},
 		{"sparse, GNU", decoded(t, madeSparse), "hole!stored as a sparse file, which is not read: unpack it"},
 		{"sparse, POSIX", decoded(t, madeSparsePAX), "hole!stored as a sparse file, which is not read: unpack it"},
-		{"twice in tar", tarOf(t, file{"a", "x"}, file{"./a", "y"}, file{"b", "z"}), "a=x\na#2!a second file of this name in the archive: the first is read; unpack it to choose\nb=z"},
-		{"twice in zip", zipOf(t, file{"a", "x"}, file{"a", "y"}), "a=x\na#2!a second file of this name in the archive: the first is read; unpack it to choose"},
-		{"a long name", tarOf(t, file{strings.Repeat("n", 5000), "x"}, file{"b", "z"}), strings.Repeat("n", 4096) + "!name of 5000 bytes is longer than the limit of 4096\nb=z"},
+		{"twice in tar", archivetest.Tar(file("a", "x"), file("./a", "y"), file("b", "z")), "a=x\na#2!a second file of this name in the archive: the first is read; unpack it to choose\nb=z"},
+		{"twice in zip", archivetest.Zip(file("a", "x"), file("a", "y")), "a=x\na#2!a second file of this name in the archive: the first is read; unpack it to choose"},
+		{"a long name", archivetest.Tar(file(strings.Repeat("n", 5000), "x"), file("b", "z")), strings.Repeat("n", 4096) + "!name of 5000 bytes is longer than the limit of 4096\nb=z"},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
 			if got := list(t, tt.data, "a.gz", limits); got != tt.want {
@@ -142,24 +144,24 @@ func TestDamage(t *testing.T) {
 		}
 		return b.String()
 	}
-	a, b, c := file{"a", noise(1)}, file{"b", noise(2)}, file{"c", noise(3)}
-	whole := tarOf(t, a, b, c)
+	a, b, c := file("a", noise(1)), file("b", noise(2)), file("c", noise(3))
+	whole := archivetest.Tar(a, b, c)
 	second := bytes.Index(whole, []byte("b\x00\x00"))
-	packed := gzipOf(t, whole)
+	packed := archivetest.Gzip(whole)
 	badSum := bytes.Clone(packed)
 	badSum[len(badSum)-8] ^= 1
-	stored := zipWith(t, func(h *zip.FileHeader) { h.Method = zip.Store }, a, b, c)
-	changed := bytes.Replace(stored, []byte(b.content), []byte("x"+b.content[1:]), 1)
+	stored := archivetest.ZipWith(func(h *zip.FileHeader) { h.Method = zip.Store }, a, b, c)
+	changed := bytes.Replace(stored, []byte(b.Content), []byte("x"+b.Content[1:]), 1)
 	gone := bytes.Clone(stored)
-	before := gone[:bytes.Index(gone, []byte(b.content))]
+	before := gone[:bytes.Index(gone, []byte(b.Content))]
 	copy(before[bytes.LastIndex(before, []byte("PK\x03\x04")):], "XX")
-	one := gzipOf(t, []byte("1234567"))
+	one := archivetest.Gzip([]byte("1234567"))
 	oneBadSum := bytes.Clone(one)
 	oneBadSum[len(one)-8] ^= 1
 	bzip2 := decoded(t, madeBzip2)
 	badBzip2 := bytes.Clone(bzip2)
 	badBzip2[12] ^= 1
-	A, B, C := "a="+a.content, "b="+b.content, "c="+c.content
+	A, B, C := "a="+a.Content, "b="+b.Content, "c="+c.Content
 	const cut, sum = "the data end in the middle: truncated?", "the checksum differs: damaged"
 	for _, tt := range []struct {
 		name string
@@ -186,12 +188,12 @@ func TestDamage(t *testing.T) {
 		{"gz with junk appended", append(bytes.Clone(one), "junk and more junk"...), "x!damaged header, or bytes behind the end of the compressed data"},
 		{"bz2 truncated", bzip2[:len(bzip2)-9], "x!" + cut},
 		{"bz2 damaged", badBzip2, "x!bzip2 data invalid: block checksum mismatch"},
-		{"damage in an archive inside", zipOf(t, file{"i.tar", string(whole[:second+2000])}, file{"z", "1"}), "i.tar!" + A + "\ni.tar!b: " + cut + "\nz=1"},
-		{"empty zip", zipOf(t), "!the archive holds no files"},
-		{"zip of a folder", zipOf(t, file{"d/", ""}), "!the archive holds no files"},
-		{"gz of an empty tar is zeros", gzipOf(t, tarOf(t)), "x=" + strings.Repeat("\x00", 1024)},
-		{"tar of a folder", tarWith(t, func(h *tar.Header) { h.Typeflag = tar.TypeDir }, file{"d/", ""}), "!the archive holds no files"},
-		{"an empty archive inside", zipOf(t, file{"i.zip", string(zipOf(t))}, file{"z", "1"}), "i.zip!the archive holds no files\nz=1"},
+		{"damage in an archive inside", archivetest.Zip(file("i.tar", string(whole[:second+2000])), file("z", "1")), "i.tar!" + A + "\ni.tar!b: " + cut + "\nz=1"},
+		{"empty zip", archivetest.Zip(), "!the archive holds no files"},
+		{"zip of a folder", archivetest.Zip(file("d/", "")), "!the archive holds no files"},
+		{"gz of an empty tar is zeros", archivetest.Gzip(archivetest.Tar()), "x=" + strings.Repeat("\x00", 1024)},
+		{"tar of a folder", archivetest.TarWith(func(h *tar.Header) { h.Typeflag = tar.TypeDir }, file("d/", "")), "!the archive holds no files"},
+		{"an empty archive inside", archivetest.Zip(file("i.zip", string(archivetest.Zip())), file("z", "1")), "i.zip!the archive holds no files\nz=1"},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
 			if got := list(t, tt.data, "x.gz", testLimits()); got != tt.want {
@@ -204,11 +206,11 @@ func TestDamage(t *testing.T) {
 // Whatever expands beyond its bounds ends there, what was read before it is kept.
 func TestBombs(t *testing.T) {
 	zeros := strings.Repeat("\x00", 1_000_000)
-	many := make([]file, 12)
+	many := make([]archivetest.Member, 12)
 	for i := range many {
-		many[i] = file{fmt.Sprintf("%02d", i), "x"}
+		many[i] = file(fmt.Sprintf("%02d", i), "x")
 	}
-	quine := gzipOf(t, gzipOf(t, gzipOf(t, []byte("x"))))
+	quine := archivetest.Gzip(archivetest.Gzip(archivetest.Gzip([]byte("x"))))
 	ratio := func(l *Limits) { l.Free = 100_000 }
 	total := func(l *Limits) { l.Total = 1_500_000 }
 	const twice = "\n!expands to more than 64 times its size"
@@ -218,22 +220,22 @@ func TestBombs(t *testing.T) {
 		change func(*Limits)
 		want   string // the end of the list
 	}{
-		{"ratio, zip", zipOf(t, file{"a", "x"}, file{"b", zeros}), ratio, "a=x" + twice},
-		{"ratio, tar.gz", gzipOf(t, tarOf(t, file{"a", "x"}, file{"b", zeros})), ratio, "a=x" + twice},
-		{"ratio, gz", gzipOf(t, []byte(zeros)), ratio, "!expands to more than 64 times its size"},
-		{"ratio, zip of gz", zipOf(t, file{"a", "x"}, file{"b", string(gzipOf(t, []byte(zeros)))}), ratio, "a=x" + twice},
-		{"ratio, skipped over in tar.gz", gzipOf(t, tarOf(t, file{"b", zeros})), func(l *Limits) { l.Free, l.Member = 100_000, 10 },
+		{"ratio, zip", archivetest.Zip(file("a", "x"), file("b", zeros)), ratio, "a=x" + twice},
+		{"ratio, tar.gz", archivetest.Gzip(archivetest.Tar(file("a", "x"), file("b", zeros))), ratio, "a=x" + twice},
+		{"ratio, gz", archivetest.Gzip([]byte(zeros)), ratio, "!expands to more than 64 times its size"},
+		{"ratio, zip of gz", archivetest.Zip(file("a", "x"), file("b", string(archivetest.Gzip([]byte(zeros))))), ratio, "a=x" + twice},
+		{"ratio, skipped over in tar.gz", archivetest.Gzip(archivetest.Tar(file("b", zeros))), func(l *Limits) { l.Free, l.Member = 100_000, 10 },
 			"b!larger than the limit of 10 bytes" + twice},
-		{"small files compress as they like", gzipOf(t, []byte(zeros)), func(*Limits) {}, "a=" + zeros},
-		{"total", zipWith(t, func(h *zip.FileHeader) { h.Method = zip.Store }, file{"a", zeros}, file{"b", zeros}), total,
+		{"small files compress as they like", archivetest.Gzip([]byte(zeros)), func(*Limits) {}, "a=" + zeros},
+		{"total", archivetest.ZipWith(func(h *zip.FileHeader) { h.Method = zip.Store }, file("a", zeros), file("b", zeros)), total,
 			"a=" + zeros + "\n!expands to more than 1500000 bytes: unpack it and name what is in it"},
-		{"count, zip", zipOf(t, many...), func(l *Limits) { l.Count = 11 }, "\n10=x\n!holds more than 11 files: unpack it"},
-		{"count, tar", tarOf(t, many...), func(l *Limits) { l.Count = 11 }, "\n10=x\n!holds more than 11 files: unpack it"},
-		{"count, over all archives", zipOf(t, file{"a", string(zipOf(t, many...))}, file{"b", string(zipOf(t, many...))}), func(l *Limits) { l.Count = 20 },
+		{"count, zip", archivetest.Zip(many...), func(l *Limits) { l.Count = 11 }, "\n10=x\n!holds more than 11 files: unpack it"},
+		{"count, tar", archivetest.Tar(many...), func(l *Limits) { l.Count = 11 }, "\n10=x\n!holds more than 11 files: unpack it"},
+		{"count, over all archives", archivetest.Zip(file("a", string(archivetest.Zip(many...))), file("b", string(archivetest.Zip(many...)))), func(l *Limits) { l.Count = 20 },
 			"\nb!05=x\n!holds more than 20 files: unpack it"},
-		{"directory", zipOf(t, many...), func(l *Limits) { l.Directory = 300 }, "!the directory of the zip archive is too long: unpack it"},
+		{"directory", archivetest.Zip(many...), func(l *Limits) { l.Directory = 300 }, "!the directory of the zip archive is too long: unpack it"},
 		{"nesting", quine, func(*Limits) {}, "a!a!an archive too deep inside others: unpack the outermost"},
-		{"nesting ends that one only", zipOf(t, file{"a", string(quine)}, file{"b", "x"}), func(*Limits) {}, "a!a!an archive too deep inside others: unpack the outermost\nb=x"},
+		{"nesting ends that one only", archivetest.Zip(file("a", string(quine)), file("b", "x")), func(*Limits) {}, "a!a!an archive too deep inside others: unpack the outermost\nb=x"},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
 			limits := testLimits()
@@ -249,7 +251,7 @@ func TestBombs(t *testing.T) {
 // bounded like any other.
 func TestOverlappingMembers(t *testing.T) {
 	content := strings.Repeat("\x00", 10_000)
-	data := zipOf(t, file{"a", content})
+	data := archivetest.Zip(file("a", content))
 	from := bytes.Index(data, []byte("PK\x01\x02"))
 	to := bytes.Index(data, []byte("PK\x05\x06"))
 	entry, end := data[from:to], bytes.Clone(data[to:])
@@ -273,9 +275,9 @@ func TestOverlappingMembers(t *testing.T) {
 
 // A size that a header only claims takes no memory.
 func TestClaimedSizes(t *testing.T) {
-	data := zipWith(t, func(h *zip.FileHeader) {
+	data := archivetest.ZipWith(func(h *zip.FileHeader) {
 		h.Method, h.CRC32, h.CompressedSize64, h.UncompressedSize64 = zip.Store, crc32.ChecksumIEEE([]byte("x")), 1, 1
-	}, file{"a", "x"})
+	}, file("a", "x"))
 	at := bytes.Index(data, []byte("PK\x01\x02"))
 	binary.LittleEndian.PutUint32(data[at+24:], 1<<28-1)
 	limits := DefaultLimits(1 << 28)
@@ -298,7 +300,7 @@ func TestSkip(t *testing.T) {
 		}
 		return ""
 	}
-	data := zipOf(t, file{"a", "x"}, file{"i.tar", string(tarOf(t, file{"r", "x"}, file{"b", "x"}))}, file{"./readme.zip", "PK\x03\x04"})
+	data := archivetest.Zip(file("a", "x"), file("i.tar", string(archivetest.Tar(file("r", "x"), file("b", "x")))), file("./readme.zip", "PK\x03\x04"))
 	got := listed(t.Context(), data, "a.zip", Options{Limits: testLimits(), Skip: skip})
 	if want := "a=x\ni.tar!r~a readme\ni.tar!b=x\nreadme.zip~a readme"; got != want {
 		t.Errorf("got\n%s\nwant\n%s", got, want)
@@ -307,7 +309,7 @@ func TestSkip(t *testing.T) {
 
 // Passing over the members of a tar finds its damage as reading them does.
 func TestDamageBehindSkippedMembers(t *testing.T) {
-	whole := tarOf(t, file{"a", strings.Repeat("x", 3000)}, file{"b", strings.Repeat("x", 3000)})
+	whole := archivetest.Tar(file("a", strings.Repeat("x", 3000)), file("b", strings.Repeat("x", 3000)))
 	second := blockSize + 6*blockSize // a header and 3000 bytes
 	for _, tt := range []struct {
 		name string
@@ -318,7 +320,7 @@ func TestDamageBehindSkippedMembers(t *testing.T) {
 		{"truncated in a member", whole[:second+blockSize+1500], "a~no\nb~no\n!b: behind it: the data end in the middle: truncated?"},
 		{"truncated behind a member", whole[:len(whole)-2*blockSize], "a~no\nb~no\n!ends without an end mark: truncated?"},
 	} {
-		for kind, data := range map[string][]byte{"tar": tt.data, "tar.gz": gzipOf(t, tt.data)} {
+		for kind, data := range map[string][]byte{"tar": tt.data, "tar.gz": archivetest.Gzip(tt.data)} {
 			got := listed(t.Context(), data, "a", Options{Limits: testLimits(), Skip: func(string) string { return "no" }})
 			if got != tt.want {
 				t.Errorf("%s, %s: got\n%s\nwant\n%s", kind, tt.name, got, tt.want)

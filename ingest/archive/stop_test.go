@@ -7,12 +7,14 @@ import (
 	"fmt"
 	"strings"
 	"testing"
+
+	"swaybook/ingest/archive/archivetest"
 )
 
 // A receiver that wants no more gets no more, and nothing is read on.
 func TestMembersStop(t *testing.T) {
-	inner := file{"i", string(tarOf(t, file{"a", "x"}, file{"b", "x"}))}
-	for name, data := range map[string][]byte{"zip": zipOf(t, inner, inner), "tar": tarOf(t, inner, inner), "gz": gzipOf(t, tarOf(t, inner))} {
+	inner := file("i", string(archivetest.Tar(file("a", "x"), file("b", "x"))))
+	for name, data := range map[string][]byte{"zip": archivetest.Zip(inner, inner), "tar": archivetest.Tar(inner, inner), "gz": archivetest.Gzip(archivetest.Tar(inner))} {
 		for stop := 1; stop <= 2; stop++ {
 			n := 0
 			for range Members(t.Context(), bytes.NewReader(data), int64(len(data)), "a", Options{Limits: testLimits()}) {
@@ -42,13 +44,13 @@ func (c *counting) ReadAt(p []byte, off int64) (int, error) {
 // A context that ends is the last that an archive says, wherever it is, and soon:
 // between members, and within one that expands.
 func TestMembersEndWithTheContext(t *testing.T) {
-	files := make([]file, 20)
+	files := make([]archivetest.Member, 20)
 	for i := range files {
-		files[i] = file{fmt.Sprintf("%02d", i), strings.Repeat(fmt.Sprint(i), 20_000)}
+		files[i] = file(fmt.Sprintf("%02d", i), strings.Repeat(fmt.Sprint(i), 20_000))
 	}
-	tarred := tarOf(t, files...)
+	tarred := archivetest.Tar(files...)
 	for name, data := range map[string][]byte{
-		"zip": zipOf(t, files...), "tar": tarred, "tar.gz": gzipOf(t, tarred), "zip of tar": zipOf(t, file{"i", string(tarred)}),
+		"zip": archivetest.Zip(files...), "tar": tarred, "tar.gz": archivetest.Gzip(tarred), "zip of tar": archivetest.Zip(file("i", string(tarred))),
 	} {
 		ctx, cancel := context.WithCancel(t.Context())
 		defer cancel()
