@@ -74,8 +74,12 @@ func leadingNumber(b []byte, mark byte) (v float64, n int) {
 		decimals = end - point
 		digits += decimals
 	}
-	exponent, end := exponentAt(b, end)
-	exponent -= decimals
+	exponent := -decimals
+	if end < len(b) && b[end] >= 'D' { // what commonly follows is below all letters
+		var e int
+		e, end = exponentAt(b, end)
+		exponent += e
+	}
 	if digits == 0 || digits > maxDigits || mantissa > maxExact || exponent < -22 || exponent > 22 {
 		return 0, 0
 	}

@@ -139,22 +139,34 @@ func refuseBinary(data []byte) error {
 // without.
 func splitLines(data []byte) [][]byte {
 	lines := make([][]byte, 0, bytes.Count(data, []byte("\n"))+1)
-	returns := bytes.IndexByte(data, '\r') >= 0
-	for len(data) > 0 {
-		var line []byte
-		line, data, _ = bytes.Cut(data, []byte("\n"))
-		for returns {
-			i := bytes.IndexByte(line, '\r')
-			if i < 0 {
-				break
-			}
-			if i == len(line)-1 {
-				line = line[:i]
-				break
-			}
-			lines, line = append(lines, line[:i]), line[i+1:]
+	returns := bytes.Count(data, []byte("\r"))
+	for rest := data; len(rest) > 0; {
+		line := rest
+		if end := bytes.IndexByte(rest, '\n'); end >= 0 {
+			line, rest = rest[:end], rest[end+1:]
+		} else {
+			rest = nil
+		}
+		if end := len(line) - 1; end >= 0 && line[end] == '\r' {
+			line = line[:end]
+			returns--
 		}
 		lines = append(lines, line)
 	}
+	if returns > 0 {
+		return splitAtReturns(lines, returns)
+	}
 	return lines
+}
+
+// splitAtReturns splits lines at the lone CR in them, of which there are so many.
+func splitAtReturns(lines [][]byte, returns int) [][]byte {
+	out := make([][]byte, 0, len(lines)+returns)
+	for _, line := range lines {
+		for at := bytes.IndexByte(line, '\r'); at >= 0; at = bytes.IndexByte(line, '\r') {
+			out, line = append(out, line[:at]), line[at+1:]
+		}
+		out = append(out, line)
+	}
+	return out
 }
