@@ -154,11 +154,13 @@ func (l *Layout) checkEnd(t *Text, rest span, s *layoutSeries, count int, ended 
 // append reads one line into the series, all of it or nothing.
 func (n *layoutNumbers) append(s *layoutSeries, line []byte, at int, scratch []byte) bool {
 	before := s.len()
-	if s.minus == 0 && bytes.Contains(line, unicodeMinus) {
-		s.minus = at
-	}
-	if n.widths != nil {
-		line = oneByteEach(line)
+	if !isASCII(line) {
+		if s.minus == 0 && bytes.Contains(line, unicodeMinus) {
+			s.minus = at
+		}
+		if n.widths != nil {
+			line = oneByteEach(line)
+		}
 	}
 	read := n.appendColumns
 	if n.wrapped() {
@@ -177,9 +179,6 @@ func (n *layoutNumbers) append(s *layoutSeries, line []byte, at int, scratch []b
 // oneByteEach returns the line with one byte for each character, so that widths
 // count characters: a minus for U+2212, a question mark for what no number holds.
 func oneByteEach(line []byte) []byte {
-	if !slices.ContainsFunc(line, func(b byte) bool { return b >= utf8.RuneSelf }) {
-		return line
-	}
 	out := make([]byte, 0, len(line))
 	for _, r := range string(line) {
 		switch {
@@ -200,14 +199,27 @@ func (n *layoutNumbers) next(line []byte, i int) (field, rest []byte) {
 	if n.widths == nil {
 		return n.form.next(line)
 	}
-	width := min(n.widths[min(i, len(n.widths)-1)], len(line))
+	width := n.width(line, i)
 	return bytes.TrimSpace(line[:width]), line[width:]
+}
+
+// width returns how many bytes of a line field i takes that begins there.
+func (n *layoutNumbers) width(line []byte, i int) int {
+	return min(n.widths[min(i, len(n.widths)-1)], len(line))
 }
 
 // read reads field i of a line as a number.
 func (n *layoutNumbers) read(line, scratch []byte, i int) (field, rest []byte, v float64, ok bool) {
 	if n.widths == nil {
 		return n.form.read(line, scratch)
+	}
+	width := n.width(line, i)
+	field = line[:width]
+	for len(field) > 0 && field[0] == ' ' {
+		field = field[1:]
+	}
+	if v, length := leadingNumber(field, n.form.mark()); length > 0 && length == len(field) {
+		return field, line[width:], v, true
 	}
 	field, rest = n.next(line, i)
 	v, ok = n.form.number(field, scratch)
@@ -216,34 +228,35 @@ func (n *layoutNumbers) read(line, scratch []byte, i int) (field, rest []byte, v
 
 func (n *layoutNumbers) appendWrapped(s *layoutSeries, line, scratch []byte) bool {
 	limit := n.form.fields
-	for i := 0; len(skipBlanks(line)) > 0; i++ {
-		var field []byte
-		var v float64
-		var ok bool
-		if field, line, v, ok = n.read(line, scratch, i); field == nil || !ok || limit > 0 && i == limit {
-			return false
+	for i := 0; len(line) > 0; i++ {
+		field, rest, v, ok := n.read(line, scratch, i)
+		if field == nil || !ok || limit > 0 && i == limit {
+			return isBlankLine(line)
 		}
 		s.values[0] = append(s.values[0], v)
+		line = rest
 	}
 	return true
 }
 
 func (n *layoutNumbers) appendColumns(s *layoutSeries, line, scratch []byte) bool {
 	i, k := 0, 0
-	for ; len(skipBlanks(line)) > 0; i++ {
-		var field []byte
+	for ; len(line) > 0; i++ {
 		if i == n.form.fields {
-			return false
+			return isBlankLine(line)
 		}
 		if k == len(n.columns) || n.columns[k].number != i+1 {
+			if isBlankLine(line) {
+				return false
+			}
 			_, line = n.next(line, i)
 			continue
 		}
-		var v float64
-		var ok bool
-		if field, line, v, ok = n.read(line, scratch, i); field == nil || !ok {
+		field, rest, v, ok := n.read(line, scratch, i)
+		if field == nil || !ok {
 			return false
 		}
+		line = rest
 		if n.columns[k].time && len(s.rows) < plainHeadLines {
 			s.resolution = min(s.resolution, resolution(field))
 		}

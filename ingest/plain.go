@@ -158,7 +158,9 @@ func warnOffset(c *Channel) {
 	sum, peak := 0.0, 0.0
 	for _, v := range c.Acceleration {
 		sum += v
-		peak = max(peak, math.Abs(v))
+		if a := math.Abs(v); a > peak {
+			peak = a
+		}
 	}
 	if mean := sum / float64(len(c.Acceleration)); math.Abs(mean) > 0.1*peak {
 		c.warn("mean of %.3g %s is over a tenth of the peak: an offset?", mean, c.Unit)

@@ -102,14 +102,12 @@ func (f numberForm) fit(lines [][]byte) (fields, fits int) {
 func (f numberForm) count(line []byte) (n int, ok bool) {
 	var room [64]byte
 	for rest := line; len(rest) > 0; {
-		var field []byte
-		if isBlankLine(rest) {
-			break
-		}
-		if field, rest, _, ok = f.read(rest, room[:0]); field == nil || !ok {
-			return 0, false
+		field, next, _, ok := f.read(rest, room[:0])
+		if field == nil || !ok {
+			return n, n > 0 && isBlankLine(rest)
 		}
 		n++
+		rest = next
 	}
 	return n, n > 0
 }
@@ -175,8 +173,10 @@ func (f numberForm) next(line []byte) (field, rest []byte) {
 		field, rest = nextField(line)
 		return unquote(field), rest
 	}
-	field, rest, _ = bytes.Cut(line, []byte{f.delimiter})
-	return unquote(bytes.TrimSpace(field)), rest
+	if end := bytes.IndexByte(line, f.delimiter); end >= 0 {
+		line, rest = line[:end], line[end+1:]
+	}
+	return unquote(bytes.TrimSpace(line)), rest
 }
 
 func unquote(field []byte) []byte {

@@ -133,27 +133,24 @@ func oddFirstLine(line []byte, n int, form numberForm) (count float64, err error
 func (r *plainRows) append(line []byte, n int, form numberForm, scratch []byte) bool {
 	i := 0
 	rows := len(r.line)
-	for rest := line; len(rest) > 0; {
-		var field []byte
-		var v float64
-		var ok bool
-		if isBlankLine(rest) {
+	for rest := line; len(rest) > 0; i++ {
+		field, next, v, ok := form.read(rest, scratch)
+		if field == nil || !ok || i == form.fields {
+			if !isBlankLine(rest) {
+				i = -1
+			}
 			break
-		}
-		if field, rest, v, ok = form.read(rest, scratch); field == nil || !ok || i == form.fields {
-			i = -1
-			break
-		}
-		if r.minus == 0 && bytes.IndexByte(field, unicodeMinus[0]) >= 0 {
-			r.minus = n
 		}
 		r.values[i] = append(r.values[i], v)
 		if rows < plainHeadLines {
 			r.resolution[i] = min(r.resolution[i], resolution(field))
 		}
-		i++
+		rest = next
 	}
 	if i == form.fields {
+		if r.minus == 0 && !isASCII(line) && bytes.Contains(line, unicodeMinus) {
+			r.minus = n
+		}
 		r.line = append(r.line, n)
 		return true
 	}
@@ -183,11 +180,14 @@ func resolution(field []byte) float64 {
 // sentinels are the numbers that tables use for "no value".
 var sentinels = []float64{-999, -9999, -99999, -999999, 9999, 99999, 999999}
 
+// leastSentinel is the least magnitude of sentinels.
+const leastSentinel = 999
+
 // checkSentinels looks for values that stand far from all others and are
 // written like "no value": several are refused, one is a warning. line gives the
 // line of a value.
 func checkSentinels(c *Channel, line func(i int) int) error {
-	isSentinel := func(v float64) bool { return slices.Contains(sentinels, v) }
+	isSentinel := func(v float64) bool { return math.Abs(v) >= leastSentinel && slices.Contains(sentinels, v) }
 	if !slices.ContainsFunc(c.Acceleration, isSentinel) {
 		return nil
 	}

@@ -23,9 +23,13 @@ func timeStep(times []float64, digit float64, line []int) (float64, error) {
 		return 0, refuse(line[0], "time", "one time is no series")
 	}
 	n := len(times) - 1
+	even := (times[n] - times[0]) / float64(n)
+	least, most := stepRange(times)
+	if least > 0 && most-least <= 1e-3*least {
+		return even, nil // the median is between them
+	}
 	steps := stepsOf(times)
 	m := median(steps)
-	even := (times[n] - times[0]) / float64(n)
 	slack := 1e-12 * max(math.Abs(times[0]), math.Abs(times[n]))
 	tolerance := float64(1e-3*math.Abs(m)) + slack
 	at := slices.IndexFunc(steps, func(s float64) bool { return math.Abs(s-m) > tolerance })
@@ -43,7 +47,7 @@ func timeStep(times []float64, digit float64, line []int) (float64, error) {
 	}
 	at = max(at, 0)
 	return 0, refuse(line[at+1], "time", "step %.6g where the median is %.6g (from %.6g to %.6g): %s",
-		steps[at], m, slices.Min(steps), slices.Max(steps), unevenCause(steps, at, m))
+		steps[at], m, least, most, unevenCause(steps, at, m))
 }
 
 // isRounded reports whether the times can be an even series that was rounded to
@@ -109,6 +113,21 @@ func unevenCause(steps []float64, at int, m float64) string {
 		return fmt.Sprintf("%.0f missing samples", math.Round(s/m)-1)
 	}
 	return "uneven times"
+}
+
+// stepRange returns the least and the greatest step between times.
+func stepRange(times []float64) (least, most float64) {
+	least, most = math.Inf(1), math.Inf(-1)
+	for i, at := range times[1:] {
+		step := at - times[i]
+		if step < least {
+			least = step
+		}
+		if step > most {
+			most = step
+		}
+	}
+	return least, most
 }
 
 func stepsOf(times []float64) []float64 {

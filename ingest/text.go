@@ -170,3 +170,19 @@ func splitAtReturns(lines [][]byte, returns int) [][]byte {
 	}
 	return out
 }
+
+// isASCII reports whether no byte of b is part of a character beyond ASCII.
+func isASCII(b []byte) bool {
+	const high = 0x8080808080808080
+	for ; len(b) >= 8; b = b[8:] {
+		if binary.LittleEndian.Uint64(b)&high != 0 {
+			return false
+		}
+	}
+	for _, c := range b {
+		if c >= utf8.RuneSelf {
+			return false
+		}
+	}
+	return true
+}
