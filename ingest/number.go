@@ -70,7 +70,17 @@ func leadingNumber(b []byte, mark byte) (v float64, n int) {
 	digits, decimals := end-i, 0
 	if end < len(b) && b[end] == mark {
 		point := end + 1
-		mantissa, end = digitsAt(b, point, mantissa)
+		if end = point; end+8 <= len(b) { // most decimals, without the cost of a call
+			value, n := eightDigits(binary.LittleEndian.Uint64(b[end:]))
+			mantissa = mantissa*integerPowers[n] + value
+			if end += n; n == 8 {
+				mantissa, end = digitsAt(b, end, mantissa)
+			}
+		} else {
+			for ; end < len(b) && isDigit(b[end]); end++ {
+				mantissa = mantissa*10 + uint64(b[end]-'0')
+			}
+		}
 		decimals = end - point
 		digits += decimals
 	}

@@ -132,8 +132,11 @@ func (h *plainHead) announced(t *Text, form numberForm) (count, first int) {
 // checkFirstValue refuses a single column whose first line looks like a count
 // and is none: digits alone above numbers that are all written with decimals.
 func checkFirstValue(t *Text, first int, rows *plainRows) error {
+	if len(rows.values) > 1 {
+		return nil
+	}
 	lines := headLines(t, first)
-	if len(rows.values) > 1 || len(lines) < 2 || len(bytes.Trim(lines[0], "0123456789")) > 0 || rows.values[0][0] < MinSamples {
+	if len(lines) < 2 || len(bytes.Trim(lines[0], "0123456789")) > 0 || rows.values[0][0] < MinSamples {
 		return nil
 	}
 	for _, line := range lines[1:] {

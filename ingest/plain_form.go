@@ -46,7 +46,9 @@ func detectForm(t *Text, first int) (numberForm, error) {
 	if best.delimiter == '\t' && best.fields == 1 && startsWithTab(t, first) {
 		best.delimiter = ' ' // tabs that separate nothing are blanks
 	}
-	best.letterless = slices.ContainsFunc(lines, func(line []byte) bool { return exponent.Match(line) })
+	best.letterless = slices.ContainsFunc(lines, func(line []byte) bool {
+		return bytes.ContainsAny(line, "EeDd") && exponent.Match(line)
+	})
 	if best.comma && best.fields == 1 {
 		pairs, n := (numberForm{delimiter: ','}).fit(lines)
 		if n == fits && pairs == 2 && integerPairs(lines) {
@@ -71,7 +73,7 @@ func startsWithTab(t *Text, first int) bool {
 
 // headLines returns the first lines of numbers, up to plainHeadLines.
 func headLines(t *Text, first int) [][]byte {
-	var lines [][]byte
+	lines := make([][]byte, 0, min(t.Len()-first+1, plainHeadLines))
 	for n := first; n <= t.Len() && len(lines) < plainHeadLines; n++ {
 		if line := bytes.TrimSpace(t.Bytes(n)); len(line) > 0 {
 			lines = append(lines, line)
