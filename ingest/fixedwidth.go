@@ -84,7 +84,7 @@ func (l fieldLayout) room(t *Text, line, count int) int {
 // beside values with one.
 func (l fieldLayout) series(t *Text, line, count int, name string) ([]float64, int, error) {
 	values := make([]float64, 0, l.room(t, line, count))
-	points := pointCount{}
+	points := pointCount{decimals: max(0, l.decimals)} // where Fw.d puts the point
 	for len(values) < count {
 		n := min(l.perLine, count-len(values))
 		if line > t.Len() {
@@ -109,6 +109,7 @@ func (l fieldLayout) series(t *Text, line, count int, name string) ([]float64, i
 // pointCount counts the values of a series by where their decimal point was.
 type pointCount struct {
 	explicit, implied int
+	decimals          int // bytes after the point where it is looked for first
 }
 
 // appendLine appends n values of line b to dst; it stops before a field that is
@@ -123,9 +124,12 @@ func (l fieldLayout) appendLine(dst []float64, b []byte, n int, points *pointCou
 		for len(field) > 0 && field[len(field)-1] == ' ' {
 			field = field[:len(field)-1]
 		}
-		v, ok := l.number(field)
+		v, length := leadingNumber(field, '.')
+		ok := length > 0 && length == len(field) && l.decimals != bareExponent
 		if !ok {
-			return dst
+			if v, ok = l.number(field); !ok {
+				return dst
+			}
 		}
 		if l.decimals != 0 {
 			if v, ok = l.placePoint(v, field, points); !ok {
@@ -148,16 +152,18 @@ func (l fieldLayout) number(field []byte) (float64, bool) {
 // placePoint divides a value whose field shows no decimal point by the power of
 // ten that the format implies. Zero is zero under every reading.
 func (l fieldLayout) placePoint(v float64, field []byte, points *pointCount) (float64, bool) {
-	// Fw.d puts the point here, so that one look settles nearly every field.
-	if at := len(field) - 1 - l.decimals; l.decimals > 0 && at >= 0 && field[at] == '.' {
+	// Most fields have it where the last one had it, so that one look settles them.
+	if at := len(field) - 1 - points.decimals; at >= 0 && field[at] == '.' {
 		points.explicit++
 		return v, true
 	}
+	at := bytes.IndexByte(field, '.')
 	switch {
 	case v == 0:
 		return v, true
-	case bytes.IndexByte(field, '.') >= 0:
+	case at >= 0:
 		points.explicit++
+		points.decimals = len(field) - 1 - at
 		return v, true
 	case l.decimals == pointExplicit:
 		return 0, false

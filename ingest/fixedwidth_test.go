@@ -59,6 +59,7 @@ func TestFixedWidthSeries(t *testing.T) {
 		{"zero without a point among values with one", "(3F6.2)", "  1.23     0 -2.50", 3, 2, []float64{1.23, 0, -2.5}},
 		{"explicit point wins", "(2F8.0)", "    1.25   -3.5", 2, 2, []float64{1.25, -3.5}},
 		{"one a line", "(1F8.3)", "   1.000\n  -2.500\n", 2, 3, []float64{1, -2.5}},
+		{"zero is zero under every reading", "(2F6.2)", "    0.   250\n   125     0\n", 4, 3, []float64{0, 2.5, 1.25, 0}},
 		{"integers", "(4I3)", "  1 -2300", 3, 2, []float64{1, -2, 300}},
 	}
 	for _, tc := range cases {

@@ -47,17 +47,18 @@ func (n *layoutNumbers) wrapped() bool { return len(n.columns) == 0 }
 // separates it taking two bytes at least, but no more than is announced.
 func (n *layoutNumbers) newSeries(t *Text, s span, count int) *layoutSeries {
 	out := &layoutSeries{columns: n.columns, resolution: math.Inf(1)}
-	lines, bytes := s.last-s.first+1, 0
-	for i := s.first; i <= s.last; i++ {
-		bytes += len(t.Bytes(i)) + 1
-	}
-	room, least := lines, 2
-	if len(n.widths) > 0 {
-		least = slices.Min(n.widths)
-	}
+	lines := s.last - s.first + 1
+	room := lines
 	if n.wrapped() {
 		out.columns = []layoutColumn{{}}
-		room = bytes/least + lines
+		bytes, least := 0, 2
+		for i := s.first; i <= s.last; i++ {
+			bytes += len(t.Bytes(i)) + 1
+		}
+		if len(n.widths) > 0 {
+			least = slices.Min(n.widths)
+		}
+		room += bytes / least
 	}
 	if count >= 0 {
 		room = min(room, count)
