@@ -28,11 +28,17 @@ func (s *layoutSeries) line(i int) int {
 	return s.rows[at-1].line
 }
 
-// lines returns the line of each row.
+// lines returns the line of each value of a column.
 func (s *layoutSeries) lines() []int {
-	lines := make([]int, len(s.rows))
+	lines := make([]int, s.len())
 	for i, r := range s.rows {
-		lines[i] = r.line
+		end := s.len()
+		if i+1 < len(s.rows) {
+			end = s.rows[i+1].before
+		}
+		for k := r.before; k < end; k++ {
+			lines[k] = r.line
+		}
 	}
 	return lines
 }

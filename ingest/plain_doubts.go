@@ -99,9 +99,9 @@ func (h *plainHead) wrapped(t *Text, form numberForm) (*plainRows, error) {
 	if err != nil || len(series.rows) == count {
 		return nil, nil // rows, or what the reader of rows says better
 	}
-	var begin []float64
-	for _, r := range series.rows {
-		begin = append(begin, series.values[0][r.before])
+	begin := make([]float64, len(series.rows))
+	for i, r := range series.rows {
+		begin[i] = series.values[0][r.before]
 	}
 	switch got := series.len(); {
 	case isMostlyEven(begin) || got != count && form.fields == 2:
@@ -109,11 +109,7 @@ func (h *plainHead) wrapped(t *Text, form numberForm) (*plainRows, error) {
 	case got != count:
 		return nil, refuse(series.line(got-1), "samples", "announced %d values, found %d in lines of %d", count, got, form.fields)
 	}
-	rows := &plainRows{values: series.values, resolution: []float64{1}, minus: series.minus, line: make([]int, count)}
-	for i := range rows.line {
-		rows.line[i] = series.line(i)
-	}
-	return rows, nil
+	return &plainRows{values: series.values, resolution: []float64{1}, minus: series.minus, line: series.lines()}, nil
 }
 
 // announced returns the number of values that a comment or the first line of

@@ -374,10 +374,18 @@ func FuzzPlain(f *testing.F) {
 
 func BenchmarkPlain(b *testing.B) {
 	blanks := timed(even(40000, 0.005), "%.3f", " ")
+	stated := []string{"# npts = 40000", "# dt = 0.005"}
+	var wrapped []string
+	for eight := range slices.Chunk(column(40000, "%10.5f"), 8) {
+		wrapped = append(wrapped, strings.Join(eight, " "))
+	}
 	for name, lines := range map[string][]string{
 		"blanks":         blanks,
 		"commas":         timed(even(40000, 0.005), "%.3f", ","),
 		"decimal commas": decimalComma(blanks),
+		"rounded times":  timed(even(40000, 1.0/128), "%.4f", " "),
+		"one a line":     head(stated, column(40000, "%.5f")),
+		"wrapped":        head(stated, wrapped),
 	} {
 		data := []byte(strings.Join(lines, "\n"))
 		text, err := NewText(data)

@@ -57,13 +57,13 @@ func isRounded(times, steps []float64, even, digit, slack float64) bool {
 	if !(digit > 0) || k < 1 || math.IsInf(digit, 0) {
 		return false
 	}
-	var lower, upper []int
+	var lower, upper spacing
 	for i, s := range steps {
 		switch r := s / digit; {
 		case math.Abs(r-k) < 1e-3+slack/digit:
-			lower = append(lower, i)
+			lower.add(i)
 		case math.Abs(r-k-1) < 1e-3+slack/digit:
-			upper = append(upper, i)
+			upper.add(i)
 		default:
 			return false
 		}
@@ -72,25 +72,28 @@ func isRounded(times, steps []float64, even, digit, slack float64) bool {
 			return false
 		}
 	}
-	if len(upper) < len(lower) {
+	if upper.n < lower.n {
 		lower = upper
 	}
-	return k > 1 || len(lower)*50 >= len(steps) && isRegular(lower)
+	return k > 1 || lower.n*50 >= len(steps) && lower.isRegular()
+}
+
+// spacing is what is kept of rising positions: how many there are, the last, and
+// the least and the greatest distance between neighbours.
+type spacing struct{ n, last, least, most int }
+
+func (s *spacing) add(at int) {
+	if d := at - s.last; s.n == 1 {
+		s.least, s.most = d, d
+	} else if s.n > 1 {
+		s.least, s.most = min(s.least, d), max(s.most, d)
+	}
+	s.n, s.last = s.n+1, at
 }
 
 // isRegular reports whether there are at least three positions, at distances
 // that differ by at most two.
-func isRegular(at []int) bool {
-	if len(at) < 3 {
-		return false
-	}
-	least, most := math.MaxInt, 0
-	for i := range at[1:] {
-		d := at[i+1] - at[i]
-		least, most = min(least, d), max(most, d)
-	}
-	return most-least <= 2
-}
+func (s *spacing) isRegular() bool { return s.n >= 3 && s.most-s.least <= 2 }
 
 // unevenCause names what makes step at differ from the median m.
 func unevenCause(steps []float64, at int, m float64) string {
