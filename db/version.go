@@ -14,18 +14,18 @@ type Version struct {
 	Digest                string
 	Instrument            string
 	Siting                string // "unknown" where nobody says
-	// The event, by the one that stands for it, and the station's code; 0 and "" where
+	// The event, by the one that stands for it, and the station's codes; 0 and "" where
 	// unknown.
-	EventID     int64
-	StationCode string
-	MotionID    int64 // 0 where no other component holds the motion
+	EventID              int64
+	Network, StationCode string
+	MotionID             int64 // 0 where no other component holds the motion
 }
 
 // versionColumns are what is read of a version, from component c, record r, its
 // event e and station s, source file f and series x.
 const versionColumns = `c.id, c.record_id, r.code, r.instrument, r.siting, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
 	coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
-	f.path, f.sha256, f.format, x.sha256, coalesce(c.motion_id, 0), coalesce(e.primary_id, e.id, 0), coalesce(s.code, '')
+	f.path, f.sha256, f.format, x.sha256, coalesce(c.motion_id, 0), coalesce(e.primary_id, e.id, 0), coalesce(s.network, ''), coalesce(s.code, '')
 	FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
 	LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id`
 
@@ -69,7 +69,7 @@ func versions(ctx context.Context, q queryer, query string, args ...any) ([]Vers
 	found, err := collect(rows, func(v *row) []any {
 		return []any{&v.ComponentID, &v.RecordID, &v.RecordCode, &v.Instrument, &v.Siting, &v.Role, &v.Axis, &v.Label, &v.AzimuthDeg, &v.Channel,
 			&v.start, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz,
-			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.MotionID, &v.EventID, &v.StationCode}
+			&v.SourcePath, &v.SourceSHA256, &v.SourceFormat, &v.Digest, &v.MotionID, &v.EventID, &v.Network, &v.StationCode}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)
@@ -97,16 +97,19 @@ type Likeness struct {
 	FirstID, SecondID  int64 // of components, the lower one first
 	Kind               string
 	Scale, Correlation float64
+	BandCorrelation    float64 // of what both are between two corners
 }
 
 // LikenessOf returns what is stored of two components; ok is false where nothing is.
 func (t *Tx) LikenessOf(ctx context.Context, firstID, secondID int64) (l Likeness, ok bool, err error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT first_id, second_id, kind, scale, correlation FROM likeness WHERE first_id = ? AND second_id = ?`,
+	rows, err := t.tx.QueryContext(ctx, `SELECT first_id, second_id, kind, scale, correlation, band_correlation FROM likeness WHERE first_id = ? AND second_id = ?`,
 		min(firstID, secondID), max(firstID, secondID))
 	if err != nil {
 		return l, false, fmt.Errorf("read likeness: %w", err)
 	}
-	found, err := collect(rows, func(l *Likeness) []any { return []any{&l.FirstID, &l.SecondID, &l.Kind, &l.Scale, &l.Correlation} })
+	found, err := collect(rows, func(l *Likeness) []any {
+		return []any{&l.FirstID, &l.SecondID, &l.Kind, &l.Scale, &l.Correlation, &l.BandCorrelation}
+	})
 	if err != nil || len(found) == 0 {
 		return l, false, err
 	}
@@ -115,8 +118,8 @@ func (t *Tx) LikenessOf(ctx context.Context, firstID, secondID int64) (l Likenes
 
 // PutLikeness stores how alike two components are.
 func (t *Tx) PutLikeness(ctx context.Context, l Likeness) error {
-	err := t.exec(ctx, `INSERT INTO likeness (first_id, second_id, kind, scale, correlation) VALUES (?, ?, ?, ?, ?)`,
-		l.FirstID, l.SecondID, l.Kind, l.Scale, l.Correlation)
+	err := t.exec(ctx, `INSERT INTO likeness (first_id, second_id, kind, scale, correlation, band_correlation) VALUES (?, ?, ?, ?, ?, ?)`,
+		l.FirstID, l.SecondID, l.Kind, l.Scale, l.Correlation, l.BandCorrelation)
 	if err != nil {
 		return fmt.Errorf("store likeness: %w", err)
 	}

@@ -33,13 +33,15 @@ ALTER TABLE record ADD COLUMN rupture_km REAL;
 ALTER TABLE record ADD COLUMN jb_km REAL;
 
 -- How alike the samples of two components are that may be one motion: of one
--- event, station and direction, or of equal samples. first_id < second_id.
+-- event, station and direction, or of equal samples, as they are and between two
+-- corners (package likeness). first_id < second_id.
 CREATE TABLE likeness (
-    first_id    INTEGER NOT NULL REFERENCES component (id),
-    second_id   INTEGER NOT NULL REFERENCES component (id),
-    kind        TEXT NOT NULL CHECK (kind IN ('different', 'similar', 'scaled', 'identical')),
-    scale       REAL NOT NULL,
-    correlation REAL NOT NULL,
+    first_id         INTEGER NOT NULL REFERENCES component (id),
+    second_id        INTEGER NOT NULL REFERENCES component (id),
+    kind             TEXT NOT NULL CHECK (kind IN ('different', 'near', 'similar', 'scaled', 'identical')),
+    scale            REAL NOT NULL,
+    correlation      REAL NOT NULL,
+    band_correlation REAL NOT NULL,
     PRIMARY KEY (first_id, second_id)
 ) STRICT, WITHOUT ROWID;
 CREATE INDEX series_digest ON series (sha256);

@@ -70,21 +70,17 @@ func (s *settler) related(ctx context.Context, recordID int64) ([]int64, error) 
 // motions returns the motion of each component: the least id of those that hold it,
 // 0 where there is no other.
 func (s *settler) motions(ctx context.Context, all []*db.Version) ([]int64, error) {
+	likes, err := s.likes(ctx, all)
+	if err != nil {
+		return nil, err
+	}
 	group := make([]int, len(all)) // the first position of those that are one
-	read := map[int64]*likeness.Motion{}
-	for i, a := range all {
+	for i := range group {
 		group[i] = i
-		for j, b := range all[:i] {
-			if a.RecordID == b.RecordID || group[i] == group[j] || !canBeOne(a, b) {
-				continue
-			}
-			same, err := s.alike(ctx, a, b, read)
-			if err != nil {
-				return nil, err
-			}
-			if same {
-				unite(group[:i+1], i, j)
-			}
+	}
+	for _, l := range likes {
+		if !hasRival(all, likes, l) {
+			unite(group, l.i, l.j)
 		}
 	}
 	least, size := map[int]int64{}, map[int]int{}
@@ -100,6 +96,50 @@ func (s *settler) motions(ctx context.Context, all []*db.Version) ([]int64, erro
 		}
 	}
 	return out, nil
+}
+
+// like says that two components, by position, may hold the same motion.
+type like struct {
+	i, j     int
+	strength float64 // by which to choose among several
+}
+
+// likes compares what may hold the same motion.
+func (s *settler) likes(ctx context.Context, all []*db.Version) ([]like, error) {
+	var out []like
+	read := map[int64]*likeness.Motion{}
+	for i, a := range all {
+		for j, b := range all[:i] {
+			if a.RecordID == b.RecordID || !canBeOne(a, b) {
+				continue
+			}
+			strength, same, err := s.alike(ctx, a, b, read)
+			if err != nil {
+				return nil, err
+			}
+			if same {
+				out = append(out, like{i, j, strength})
+			}
+		}
+	}
+	return out, nil
+}
+
+// hasRival reports whether one of the two components is more like a sensor beside the
+// other: what one sensor gave is like what those beside it gave, and most like its own.
+func hasRival(all []*db.Version, likes []like, l like) bool {
+	for _, r := range likes {
+		if r.strength <= l.strength {
+			continue
+		}
+		for _, ends := range [][2]int{{r.i, r.j}, {r.j, r.i}} {
+			shared, rival := ends[0], ends[1]
+			if shared == l.i && areTwoSensors(all[rival], all[l.j]) || shared == l.j && areTwoSensors(all[rival], all[l.i]) {
+				return true
+			}
+		}
+	}
+	return false
 }
 
 // unite makes the groups of i and j one.
@@ -152,26 +192,46 @@ func areTwoSensors(a, b *db.Version) bool {
 		a.SourceFormat == b.SourceFormat && (differ(a.Instrument, b.Instrument) || differ(a.Channel, b.Channel))
 }
 
-// alike reports whether two components hold the same motion. read keeps what is
-// read of each.
-func (s *settler) alike(ctx context.Context, a, b *db.Version, read map[int64]*likeness.Motion) (bool, error) {
+// isOneSensorProcessed reports whether two components are, by all that is said of
+// them, of one sensor, in different states of processing. Where many stand side by
+// side, in structures and boreholes, it takes the same channel.
+func isOneSensorProcessed(a, b *db.Version) bool {
+	if a.EventID == 0 || a.EventID != b.EventID || a.StationCode == "" || a.StationCode != b.StationCode || differ(a.Network, b.Network) {
+		return false
+	}
+	if a.Start.IsZero() || b.Start.IsZero() || a.Processing == b.Processing || areTwoSensors(a, b) || differ(a.Instrument, b.Instrument) {
+		return false
+	}
+	return a.Channel == b.Channel && a.Channel != "" || !differ(a.Channel, b.Channel) && !standsAmongOthers(a) && !standsAmongOthers(b)
+}
+
+func standsAmongOthers(v *db.Version) bool {
+	return v.Siting == string(ingest.SitingStructure) || v.Siting == string(ingest.SitingBorehole)
+}
+
+// alike reports whether two components hold the same motion, and how much alike they
+// are. read keeps what is read of each.
+func (s *settler) alike(ctx context.Context, a, b *db.Version, read map[int64]*likeness.Motion) (strength float64, same bool, err error) {
 	if a.Digest == b.Digest {
-		return true, nil
+		return 1, true, nil
 	}
 	l, ok, err := s.tx.LikenessOf(ctx, a.ComponentID, b.ComponentID)
 	if err == nil && !ok {
 		l, err = s.compare(ctx, a, b, read)
 	}
 	if err != nil {
-		return false, err
+		return 0, false, err
 	}
+	strength = max(math.Abs(l.Correlation), math.Abs(l.BandCorrelation))
 	switch l.Kind {
 	case likeness.Different.String():
-		return false, nil
+		return strength, false, nil
+	case likeness.Near.String():
+		return strength, isOneSensorProcessed(a, b), nil
 	case likeness.Similar.String():
-		return !areTwoSensors(a, b), nil
+		return strength, !areTwoSensors(a, b), nil
 	}
-	return true, nil
+	return 1, true, nil
 }
 
 // compare compares the samples of two components, once for all time.
@@ -189,7 +249,7 @@ func (s *settler) compare(ctx context.Context, a, b *db.Version, read map[int64]
 		return l, err
 	}
 	v := s.comparer.Compare(first, second)
-	l.Kind, l.Scale, l.Correlation = v.Kind.String(), v.Scale, v.Correlation
+	l.Kind, l.Scale, l.Correlation, l.BandCorrelation = v.Kind.String(), v.Scale, v.Correlation, v.InBand
 	return l, s.tx.PutLikeness(ctx, l)
 }
 

@@ -6,6 +6,7 @@ import (
 	"math/rand/v2"
 	"strings"
 	"testing"
+	"time"
 
 	"swaybook/db"
 )
@@ -13,11 +14,17 @@ import (
 // csvOf is the motion of at2 of this seed as a plain column, in gal with so many
 // decimals, times a factor.
 func csvOf(seed uint64, factor float64, decimals int) string {
+	return driftingCSV(seed, factor, decimals, 0)
+}
+
+// driftingCSV is that with a baseline that rises to so many times the motion's root
+// mean square.
+func driftingCSV(seed uint64, factor float64, decimals int, drift float64) string {
 	rng := rand.New(rand.NewPCG(seed, 3))
 	var b strings.Builder
 	b.WriteString("# dt = 0.01 s\nacc [gal]\n")
-	for range 600 {
-		fmt.Fprintf(&b, "%.*f\n", decimals, factor*0.1*980.665*rng.NormFloat64())
+	for i := range 600 {
+		fmt.Fprintf(&b, "%.*f\n", decimals, factor*0.1*980.665*(rng.NormFloat64()+drift*float64(i)/600))
 	}
 	return b.String()
 }
@@ -34,6 +41,8 @@ func TestVersionsOfOneMotion(t *testing.T) {
 	}{
 		{"other digits", csvOf(1, 1, 2), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 invented-20260312_site-00"},
 		{"half as large", csvOf(1, -0.5, 4), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 invented-20260312_site-00"},
+		{"with a drift", driftingCSV(1, 1, 3, 5), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 invented-20260312_site-00"},
+		{"another motion with a drift", driftingCSV(2, 1, 3, 5), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 -"},
 		{"another motion", csvOf(2, 1, 2), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 -"},
 		{"another station", csvOf(1, 1, 2), "zcopy.csv,invented-20260312,site-01,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-01 h1 -"},
 		{"another direction", csvOf(1, 1, 2), "zcopy.csv,invented-20260312,site-00,090\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h2 -"},
@@ -116,4 +125,71 @@ func duplicates(t *testing.T, store *db.Store) string {
 		out = append(out, c.Record.Code+" "+c.Role+" "+cmp.Or(of[c.Record.Code+c.Role], "-"))
 	}
 	return strings.Join(out, ", ")
+}
+
+// What one sensor gave is one motion with what it is most like, not with that of the
+// sensor beside it, which it is like, too.
+func TestSensorsSideBySide(t *testing.T) {
+	version := func(format, file, channel string) *db.Version {
+		v := &db.Version{Siting: "structure"}
+		v.SourceFormat, v.SourceSHA256, v.Channel = format, file, channel
+		return v
+	}
+	all := []*db.Version{version("a", "1", "5"), version("a", "2", "6"), version("b", "3", "X"), version("b", "4", "Y"), version("c", "5", "")}
+	likes := []like{{2, 0, 0.999}, {2, 1, 0.995}, {3, 0, 0.994}, {3, 1, 0.998}, {4, 0, 0.996}, {4, 2, 0.997}, {4, 1, 0.993}}
+	want := []bool{false, true, true, false, false, false, true}
+	for range 6 {
+		for i, l := range likes {
+			if got := hasRival(all, likes, l); got != want[i] {
+				t.Errorf("%v has a rival: %v, want %v", l, got, want[i])
+			}
+		}
+		rand.Shuffle(len(likes), func(i, j int) {
+			likes[i], likes[j] = likes[j], likes[i]
+			want[i], want[j] = want[j], want[i]
+		})
+	}
+}
+
+// Motions that are near to each other only are versions where all that is said speaks
+// for one sensor.
+func TestOneSensorProcessed(t *testing.T) {
+	full := func() *db.Version {
+		v := &db.Version{EventID: 1, Network: "XX", StationCode: "AAA", Instrument: "00", Siting: "structure"}
+		v.Start, v.Processing, v.Channel, v.SourceFormat = quakeTime, "raw", "HNE", "a"
+		return v
+	}
+	for _, test := range []struct {
+		name   string
+		change func(v *db.Version)
+		want   bool
+	}{
+		{"nothing else", func(*db.Version) {}, true},
+		{"another format", func(v *db.Version) { v.SourceFormat = "b" }, true},
+		{"no network", func(v *db.Version) { v.Network = "" }, true},
+		{"no instrument", func(v *db.Version) { v.Instrument = "" }, true},
+		{"no channel, in a structure", func(v *db.Version) { v.Channel = "" }, false},
+		{"another channel", func(v *db.Version) { v.Channel, v.SourceFormat = "HNN", "b" }, false},
+		{"another instrument", func(v *db.Version) { v.Instrument, v.SourceFormat = "10", "b" }, false},
+		{"another network", func(v *db.Version) { v.Network = "YY" }, false},
+		{"another siting", func(v *db.Version) { v.Siting = "free-field" }, false},
+		{"raw as well", func(v *db.Version) { v.Processing = "raw" }, false},
+		{"no time", func(v *db.Version) { v.Start = time.Time{} }, false},
+		{"no event", func(v *db.Version) { v.EventID = 0 }, false},
+		{"no station", func(v *db.Version) { v.StationCode = "" }, false},
+		{"another file", func(v *db.Version) { v.SourceSHA256 = "other" }, true},
+	} {
+		a, b := full(), full()
+		a.SourceSHA256, b.SourceSHA256, b.Processing = "a", "b", "corrected"
+		test.change(b)
+		if got := isOneSensorProcessed(a, b); got != test.want || isOneSensorProcessed(b, a) != got {
+			t.Errorf("%s: %v, want %v", test.name, got, test.want)
+		}
+	}
+	a, b := full(), full()
+	a.SourceSHA256, b.SourceSHA256, b.Processing = "a", "b", "corrected"
+	a.Siting, b.Siting, a.Channel = "unknown", "free-field", ""
+	if !isOneSensorProcessed(a, b) {
+		t.Error("no channel, not known to be in a structure: not one sensor")
+	}
 }

@@ -11,13 +11,14 @@ type Kind int
 // From nothing in common to the same samples; the package comment has the limits.
 const (
 	Different Kind = iota
+	Near
 	Similar
 	Scaled
 	Identical
 )
 
 func (k Kind) String() string {
-	return [...]string{"different", "similar", "scaled", "identical"}[k]
+	return [...]string{"different", "near", "similar", "scaled", "identical"}[k]
 }
 
 // Verdict is what Compare finds of motions a and b.
@@ -27,7 +28,8 @@ type Verdict struct {
 
 	// b is Scale·a + Offset, Offset in the unit of b, as far as the two are alike.
 	// Scale is the ratio of standard deviations over the common part, with the sign
-	// of Correlation. Both are 0 if the motions are Different.
+	// of the correlation. Both are 0 if the motions are Different, and Offset where
+	// they are alike in the band only.
 	Scale, Offset float64
 
 	// a begins Lag steps of LagStepS seconds after b. LagStepS is the step of both,
@@ -40,6 +42,9 @@ type Verdict struct {
 	// samples that it is taken over. Zero if no correlation was taken.
 	Correlation float64
 	Common      int
+	// The same of both motions in the band. Zero also where the samples themselves are
+	// Scaled or Identical.
+	InBand float64
 }
 
 // Comparer compares motions. It keeps buffers and transforms between calls, which
@@ -52,8 +57,48 @@ type Comparer struct {
 // Scale and negates Lag.
 //
 // A pair whose greatest swings are not alike costs some thousand multiplications, any
-// other three Fourier transforms of a little more than the samples of the longer one.
+// other three Fourier transforms of a little more than the samples of the longer one,
+// or six.
 func (c *Comparer) Compare(a, b *Motion) Verdict {
+	v := c.compare(a, b, &asTheyAre)
+	if v.Kind >= Scaled {
+		return v
+	}
+	w := c.compareInBand(a, b)
+	if w.Kind <= v.Kind {
+		v.InBand = w.Correlation
+		return v
+	}
+	w.Correlation, w.InBand = v.Correlation, w.Correlation
+	return w
+}
+
+// compareInBand compares what motions are between the corners that both have.
+func (c *Comparer) compareInBand(a, b *Motion) Verdict {
+	inA, inB := bandsOf(a, b)
+	if inA == nil || inB == nil {
+		return Verdict{}
+	}
+	v := c.compare(inA, inB, &betweenCorners)
+	v.Scale, v.Offset = float64(v.Scale*(a.unit/b.unit)), 0
+	return v
+}
+
+// bandsOf returns both motions between the corners that both have; nil where that
+// leaves nothing.
+func bandsOf(a, b *Motion) (inA, inB *Motion) {
+	inA, inB = a.band, b.band
+	switch cornerA, cornerB := cornerOf(a.stepS), cornerOf(b.stepS); {
+	case cornerA > cornerB:
+		inA = a.banded(cornerB)
+	case cornerB > cornerA:
+		inB = b.banded(cornerA)
+	}
+	return inA, inB
+}
+
+// compare compares two series by these limits.
+func (c *Comparer) compare(a, b *Motion, l *limits) Verdict {
 	if a.still() || b.still() {
 		return Verdict{Reason: "no motion"}
 	}
@@ -73,7 +118,7 @@ func (c *Comparer) Compare(a, b *Motion) Verdict {
 	if !found {
 		return Verdict{Reason: "no lag at which they share most of their energy"}
 	}
-	v := judge(c.search.at(lag))
+	v := judge(c.search.at(lag), l)
 	v.Lag, v.LagStepS = lag, stepS
 	if exchanged {
 		v.Lag = -lag
@@ -94,17 +139,19 @@ func (c *Comparer) Compare(a, b *Motion) Verdict {
 }
 
 // judge makes a verdict of what two series have in common.
-func judge(p pair) Verdict {
+func judge(p pair, l *limits) Verdict {
 	v := Verdict{Correlation: p.correlation, Common: p.n}
 	size := math.Abs(p.correlation)
 	switch {
 	case p.crossings < crossings:
 		v.Reason = fmt.Sprintf("only %d crossings of zero in common", p.crossings)
 		return v
-	case size < similar:
+	case size < l.near:
 		v.Reason = fmt.Sprintf("correlation %.3f at best", p.correlation)
 		return v
-	case size < exact:
+	case size < l.similar:
+		v.Kind = Near
+	case size < l.exact:
 		v.Kind = Similar
 	default:
 		v.Kind = Scaled

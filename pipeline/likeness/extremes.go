@@ -7,7 +7,7 @@ import (
 
 // Before two motions are correlated at all lags, they are at the few lags that bring
 // a great swing of one to a great swing of the other. Where the motions are the same,
-// what differs is a seventh of the motion in the mean square and less of its greatest
+// what differs is half of the motion in the band at most, and less of its greatest
 // swings, which therefore are among the greatest of both.
 const (
 	kept   = 6    // swings

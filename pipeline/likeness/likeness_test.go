@@ -83,7 +83,8 @@ func TestOverlap(t *testing.T) {
 
 // TestCorrelationInClosedForm adds to a sine another of c times its size that is
 // orthogonal to it over the whole series: ρ = 1/√(1 + c²). All lags but 0 correlate
-// less, since the envelope falls.
+// less, since the envelope falls. The step is so great that no band
+// is left between the corners.
 func TestCorrelationInClosedForm(t *testing.T) {
 	const n = 4000
 	wave := func(cycles int) []float64 {
@@ -103,7 +104,7 @@ func TestCorrelationInClosedForm(t *testing.T) {
 			y[i] = x[i] + c.size*z[i]
 		}
 		want := 1 / math.Sqrt(1+c.size*c.size)
-		v := compareBoth(t, motion(t, x, 0.01), motion(t, y, 0.01))
+		v := compareBoth(t, motion(t, x, 0.2), motion(t, y, 0.2))
 		if v.Kind != c.kind || v.Lag != 0 || !near(v.Correlation, want, 1e-9) {
 			t.Errorf("a residual of %v: %+v, want %v with correlation %v", c.size, v, c.kind, want)
 		}
@@ -127,7 +128,7 @@ func TestFilteredMotionIsSimilar(t *testing.T) {
 			x := invented(t, k.m, k.distanceM, seed)
 			a := motion(t, x, stepS)
 			for _, band := range bands {
-				v := c.Compare(a, motion(t, zeroPhase(x, band.low, band.high), stepS))
+				v := c.Compare(a, motion(t, bothWays(x, band.low, band.high), stepS))
 				least = min(least, v.Correlation)
 				if v.Kind != Similar && v.Kind != Identical || v.Lag != 0 || !near(v.Scale, 1, 0.05) {
 					t.Errorf("M %v at %v m, seed %d, %v–%v Hz: %+v", k.m, k.distanceM, seed, band.low, band.high, v)
@@ -191,9 +192,9 @@ func TestOtherMotionIsDifferent(t *testing.T) {
 	}
 }
 
-// TestNearbyStationsAreDifferent mixes into a motion another of its kind, which makes
+// TestNearbyStationsAreNotSimilar mixes into a motion another of its kind, which makes
 // two records with correlation √share, as of stations close to each other: up to 0.95.
-func TestNearbyStationsAreDifferent(t *testing.T) {
+func TestNearbyStationsAreNotSimilar(t *testing.T) {
 	for seed := range uint64(4) {
 		x, z := invented(t, 6, 30e3, 200+seed), invented(t, 6, 30e3, 300+seed)
 		for _, share := range []float64{0.5, 0.8, 0.9} {
@@ -202,10 +203,13 @@ func TestNearbyStationsAreDifferent(t *testing.T) {
 				y[i] = math.Sqrt(share)*x[i] + math.Sqrt(1-share)*z[i]
 			}
 			v := compareBoth(t, motion(t, x, stepS), motion(t, y, stepS))
-			if v.Kind != Different || v.Reason == "" || v.Scale != 0 || v.Offset != 0 {
+			if v.Kind > Near || (v.Kind == Different) != (share == 0.5) || !near(v.InBand, math.Sqrt(share), 0.15) && share > 0.5 {
 				t.Errorf("seed %d, share %v: %+v", seed, share, v)
 			}
-			if share == 0.9 && !(v.Correlation > 0.9 && strings.HasPrefix(v.Reason, "correlation 0.9")) {
+			if v.Kind == Different && (v.Reason == "" || v.Scale != 0 || v.Offset != 0) {
+				t.Errorf("seed %d, share %v: %+v, want a reason and no scale", seed, share, v)
+			}
+			if share == 0.9 && !(v.Correlation > 0.9) {
 				t.Errorf("seed %d, share %v: %+v, want the correlation that was found", seed, share, v)
 			}
 		}

@@ -7,11 +7,17 @@ import (
 )
 
 const (
-	shared    = 0.8     // part in common, of the samples of the shorter and of the energy of each
-	similar   = 0.97    // |ρ| of the same motion, slightly processed
-	exact     = 0.99995 // |ρ| of the same motion but for rounding
-	sameScale = 0.002   // from 1, of factors that a rounded g explains
-	crossings = 16      // fewest of zero in common
+	shared    = 0.8   // part in common, of the samples of the shorter and of the energy of each
+	sameScale = 0.002 // from 1, of factors that a rounded g explains
+	crossings = 16    // fewest of zero in common
+)
+
+// limits are the least |ρ| of each kind.
+type limits struct{ near, similar, exact float64 }
+
+var (
+	asTheyAre      = limits{near: 0.97, similar: 0.97, exact: 0.99995}     // never Near
+	betweenCorners = limits{near: 0.85, similar: 0.99, exact: math.Inf(1)} // never Scaled
 )
 
 // Motion is a series of samples with what is known of it before any comparison.
@@ -23,14 +29,26 @@ type Motion struct {
 	mean     float64 // of samples times unit
 	energy   float64 // Σ(sample·unit − mean)²
 	extremes []int   // where the greatest swings are, the greatest first
+	band     *Motion // between lowHz and cornerOf its step; nil where that leaves nothing
 }
 
 // NewMotion describes samples, in any unit, taken every stepS seconds. The slice is
 // kept, not copied, and must not change while the Motion is in use.
 //
 // It is an error if there are no samples, if one is not finite, or if stepS is not
-// positive and finite. Cost: a few passes over the samples.
+// positive and finite. Cost: some ten passes over the samples, of which a filtered
+// copy is kept.
 func NewMotion(samples []float64, stepS float64) (*Motion, error) {
+	m, err := describe(samples, stepS)
+	if err != nil {
+		return nil, err
+	}
+	m.band = m.banded(cornerOf(stepS))
+	return m, nil
+}
+
+// describe is NewMotion without the part between the corners.
+func describe(samples []float64, stepS float64) (*Motion, error) {
 	if !(stepS > 0) || math.IsInf(stepS, 1) {
 		return nil, fmt.Errorf("time step %v s is not positive", stepS)
 	}

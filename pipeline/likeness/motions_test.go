@@ -73,8 +73,8 @@ func bandPass(x []float64, lowHz, highHz float64) []float64 {
 	return butterworth(butterworth(x, lowHz, true), highHz, false)
 }
 
-// zeroPhase filters forward and backward, as offline processing does.
-func zeroPhase(x []float64, lowHz, highHz float64) []float64 {
+// bothWays filters forward and backward, as offline processing does.
+func bothWays(x []float64, lowHz, highHz float64) []float64 {
 	y := bandPass(x, lowHz, highHz)
 	slices.Reverse(y)
 	y = bandPass(y, lowHz, highHz)

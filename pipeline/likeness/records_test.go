@@ -1,7 +1,6 @@
 package likeness
 
 import (
-	"math"
 	"os"
 	"path/filepath"
 	"testing"
@@ -48,7 +47,7 @@ func TestRecordings(t *testing.T) {
 		list = append(list, motion(t, c.Acceleration, c.StepS))
 	}
 	var comparer Comparer
-	most := 0.0
+	most, mostInBand := 0.0, 0.0
 	for i, a := range list {
 		x, n := channels[i].Acceleration, len(channels[i].Acceleration)
 		for j, b := range list[:i] {
@@ -56,10 +55,8 @@ func TestRecordings(t *testing.T) {
 				t.Errorf("%s and %s: %+v", names[i], names[j], v)
 			}
 			if a.stepS == b.stepS {
-				comparer.search.load(a, b, 1, a.stepS)
-				if lag, found := comparer.search.best(); found {
-					most = max(most, math.Abs(comparer.search.at(lag).correlation))
-				}
+				most = max(most, correlated(&comparer, a, b))
+				mostInBand = max(mostInBand, correlated(&comparer, a.band, b.band))
 			}
 		}
 		for _, c := range []struct {
@@ -80,11 +77,19 @@ func TestRecordings(t *testing.T) {
 		if a.stepS != stepS { // the filter of these tests
 			continue
 		}
-		v := comparer.Compare(a, motion(t, zeroPhase(x, 0.1, 25), a.stepS))
+		v := comparer.Compare(a, motion(t, bothWays(x, 0.1, 25), a.stepS))
 		t.Logf("%s band-passed 0.1–25 Hz: %v, correlation %.4f", names[i], v.Kind, v.Correlation)
 		if v.Kind < Similar {
 			t.Errorf("%s band-passed 0.1–25 Hz: %+v", names[i], v)
 		}
+		for _, d := range []disturb{ramp, baseline, swell} {
+			raw := d.at(x, 0.2, nil)
+			v := comparer.Compare(motion(t, raw, stepS), motion(t, everyNth(bothWays(raw, 0.3, 20), 2), 2*stepS))
+			t.Logf("%s with %s, corrected 0.3–20 Hz at 100 Hz: %v, correlation %.4f, in band %.4f", names[i], d.name, v.Kind, v.Correlation, v.InBand)
+			if v.Kind != Similar {
+				t.Errorf("%s with %s, corrected: %+v", names[i], d.name, v)
+			}
+		}
 	}
-	t.Logf("greatest correlation of two recordings at one step %.3f", most)
+	t.Logf("greatest correlation of two recordings at one step %.3f, in band %.3f", most, mostInBand)
 }
