@@ -157,6 +157,18 @@ func (t *Tx) EventsAlike(ctx context.Context, id int64) ([]EventKey, error) {
 			UNION SELECT o.id FROM event e JOIN event o ON o.primary_id = e.primary_id WHERE e.id = ?1)`, id)
 }
 
+// EventKey returns the key of the event with this id, which must exist.
+func (t *Tx) EventKey(ctx context.Context, id int64) (EventKey, error) {
+	found, err := t.eventKeys(ctx, `id = ?`, id)
+	if err == nil && len(found) == 0 {
+		err = fmt.Errorf("read events: no event %d", id)
+	}
+	if err != nil {
+		return EventKey{}, err
+	}
+	return found[0], nil
+}
+
 // FindEvent returns the event of this code; ok is false where there is none.
 func (t *Tx) FindEvent(ctx context.Context, code string) (k EventKey, ok bool, err error) {
 	found, err := t.eventKeys(ctx, `code = ?`, code)

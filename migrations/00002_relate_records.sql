@@ -50,3 +50,21 @@ CREATE INDEX series_digest ON series (sha256);
 -- it is the least of their ids. NULL where there is no other.
 ALTER TABLE component ADD COLUMN motion_id INTEGER REFERENCES component (id);
 CREATE INDEX component_motion ON component (motion_id) WHERE motion_id IS NOT NULL;
+
+-- The QuakeML events that may be an event, of which the nearest to what catalogue and
+-- headers state of it makes the statements of metadata. came is 1 where its waves
+-- reached a station while a record of the event ran; code is that which it gives.
+CREATE TABLE quake (
+    event_id       INTEGER NOT NULL REFERENCES event (id),
+    public_id      TEXT NOT NULL,
+    code           TEXT NOT NULL,
+    came           INTEGER NOT NULL CHECK (came IN (0, 1)),
+    name           TEXT,
+    origin_time    TEXT NOT NULL,
+    latitude_deg   REAL,
+    longitude_deg  REAL,
+    depth_km       REAL,
+    magnitude      REAL,
+    magnitude_type TEXT,
+    PRIMARY KEY (event_id, public_id)
+) STRICT, WITHOUT ROWID;

@@ -11,13 +11,7 @@ func recordOf(c ingest.Channel, code string) db.Record {
 	if r.Siting == "" {
 		r.Siting = string(ingest.SitingUnknown)
 	}
-	if eventCode := ingest.EventCode(&c); eventCode != "" {
-		e := c.Event
-		r.Event = &db.Event{
-			Code: eventCode, Name: e.Name, Origin: e.Origin, LatitudeDeg: pointer(e.Latitude), LongitudeDeg: pointer(e.Longitude),
-			DepthKM: pointer(e.DepthKM), Magnitude: pointer(e.Magnitude), MagnitudeType: e.MagnitudeType,
-		}
-	}
+	r.Event = eventOf(&c)
 	if c.Station.Code != "" || c.Station.Name != "" {
 		s := c.Station
 		r.Station = &db.Station{
@@ -26,6 +20,19 @@ func recordOf(c ingest.Channel, code string) db.Record {
 		}
 	}
 	return r
+}
+
+// eventOf is the channel's event, nil where it has no code.
+func eventOf(c *ingest.Channel) *db.Event {
+	code := ingest.EventCode(c)
+	if code == "" {
+		return nil
+	}
+	e := c.Event
+	return &db.Event{
+		Code: code, Name: e.Name, Origin: e.Origin, LatitudeDeg: pointer(e.Latitude), LongitudeDeg: pointer(e.Longitude),
+		DepthKM: pointer(e.DepthKM), Magnitude: pointer(e.Magnitude), MagnitudeType: e.MagnitudeType,
+	}
 }
 
 // channelOf is the description, without samples, of what is held.

@@ -4,27 +4,27 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/ingest"
 )
 
 // describeHeld applies metadata and catalogue to what the store holds of a file's
-// content: nothing is read again, but what they say of it counts. It returns what
+// content: nothing is read again, but what they say of it counts. It warns of what
 // can no longer be changed.
-func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result) (warnings []string, err error) {
+func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report *FileReport) error {
 	if w.opts.Catalogue == nil && w.opts.Hints.Metadata.IsEmpty() {
-		return nil, nil
+		return nil
 	}
 	components, err := tx.ComponentsOf(ctx, w.run.generation, res.source.SHA256)
 	if err != nil {
-		return nil, err
+		return err
 	}
 	for _, held := range components {
 		c := channelOf(held)
-		key := db.RecordKey{ID: held.RecordID, EventID: held.Record.EventID, StationID: held.Record.StationID}
-		if err := w.settler.state(ctx, key, metadataAccounts(w.opts.Hints.Metadata, &c, held.Samples)); err != nil {
-			return nil, err
+		if err := w.describeByMetadata(ctx, tx, held, c, report); err != nil {
+			return err
 		}
 		if w.opts.Catalogue == nil {
 			continue
@@ -33,12 +33,28 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result) (warni
 		stated, matched := w.opts.Catalogue.Apply(res.rel, &c)
 		if matched {
 			if err := w.redescribe(ctx, tx, held, c.Orientation, stated); err != nil {
-				return nil, err
+				return err
 			}
 		}
-		warnings = append(warnings, tooLate(hints, held)...)
+		report.Warnings = append(report.Warnings, tooLate(hints, held)...)
 	}
-	return warnings, nil
+	return nil
+}
+
+// describeByMetadata stores what metadata state of a held component, which is c. What
+// they have stated of its earthquake before is no reason to take it for known.
+func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.HeldComponent, c ingest.Channel, report *FileReport) error {
+	key := db.RecordKey{ID: held.RecordID, EventID: held.Record.EventID, StationID: held.Record.StationID}
+	own, err := tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: key.EventID})
+	if err != nil {
+		return err
+	}
+	c.Event.Origin = asStated(own).Origin
+	accounts, doubt := metadataAccounts(w.opts.Hints.Metadata, &c, held.Samples)
+	if !slices.ContainsFunc(own, func(st db.Statement) bool { return st.By == db.ByMetadata }) {
+		report.doubt(doubt)
+	}
+	return w.settler.state(ctx, key, accounts)
 }
 
 // redescribe stores what the catalogue states of a held component.

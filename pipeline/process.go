@@ -43,6 +43,7 @@ type solved struct {
 	stated   ingest.Channel // what the catalogue says of it, and nothing else
 	matched  bool           // whether the catalogue says anything
 	accounts []account      // what everybody says of its event, station and record
+	doubt    string         // why metadata do not tell its earthquake
 	samples  int
 	data     []byte // compressed samples
 	digest   string
@@ -125,10 +126,11 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	res.outcome, res.refused = Stored, refused
 	for i := range channels {
 		accounts := []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: withoutSamples(channels[i])}}
-		accounts = append(accounts, metadataAccounts(r.hints.Metadata, &channels[i], len(channels[i].Acceleration))...)
+		described, doubt := metadataAccounts(r.hints.Metadata, &channels[i], len(channels[i].Acceleration))
+		accounts = append(accounts, described...)
 		stated, matched := r.describe(file, res.stem, &channels[i])
 		s, err := r.solve(channels[i])
-		s.stated, s.matched, s.accounts = stated, matched, accounts
+		s.stated, s.matched, s.accounts, s.doubt = stated, matched, accounts, doubt
 		if matched {
 			s.accounts = append(s.accounts, catalogueAccount(stated))
 		}

@@ -1,6 +1,8 @@
 package pipeline
 
 import (
+	"context"
+	"fmt"
 	"math"
 	"slices"
 	"time"
@@ -20,27 +22,49 @@ const (
 )
 
 // metadataAccounts are what StationXML and QuakeML say of a channel of so many
-// samples. A channel that
-// knows nothing of its earthquake is given the one of QuakeML.
-func metadataAccounts(m *ingest.Metadata, c *ingest.Channel, samples int) []account {
+// samples. A channel that states no origin time may be of the QuakeML event whose waves
+// came while it recorded, and is given it where it knows nothing of its earthquake. Of
+// any other, the QuakeML event is found by what all its files state (settler.quake).
+// doubt says why none of several was taken.
+func metadataAccounts(m *ingest.Metadata, c *ingest.Channel, samples int) (accounts []account, doubt string) {
 	if m.IsEmpty() {
-		return nil
+		return nil, ""
 	}
-	said := account{by: db.ByMetadata, source: "metadata", scheme: "metadata"}
+	said := account{by: db.ByMetadata, source: "metadata"}
 	station, ok := m.Station(c)
 	said.channel.Station = station
-	if event, found := quakeOf(m.Events(), c, samples, station); found {
-		ok = true
-		said.channel.Event = event.Event
-		if isWithoutEvent(c) {
-			c.Event = event.Event
+	if c.Event.Origin.IsZero() {
+		came := arriving(m.Events(), c, samples, station)
+		switch {
+		case len(came) == 1:
+			ok, said.quake = true, &came[0]
+			if isWithoutEvent(c) {
+				c.Event = came[0].Event
+			}
+		case len(came) > 1:
+			doubt = fmt.Sprintf("the waves of %d QuakeML events came while it recorded, none of which is taken: %s", len(came), namesOf(came))
 		}
-		said.channel.Event.ID = event.PublicID
 	}
 	if !ok {
-		return nil
+		return nil, doubt
 	}
-	return []account{said}
+	return []account{said}, doubt
+}
+
+// namesOf names the first of several events.
+func namesOf(events []ingest.CatalogueEvent) string {
+	const most = 4
+	var out string
+	for i, e := range events {
+		if i == most {
+			return out + ", …"
+		}
+		if i > 0 {
+			out += ", "
+		}
+		out += fmt.Sprintf("%.80s (%s)", e.PublicID, e.Origin.UTC().Format("2006-01-02T15:04:05Z"))
+	}
+	return out
 }
 
 // isWithoutEvent reports whether a channel says nothing of its earthquake.
@@ -48,22 +72,105 @@ func isWithoutEvent(c *ingest.Channel) bool {
 	return c.Event.ID == "" && c.Event.Name == "" && c.Event.Origin.IsZero()
 }
 
-// quakeOf returns the event that the channel recorded: the one nearest to what the
-// channel says of its earthquake, else the only one whose waves reached the station
-// while it recorded.
-func quakeOf(events []ingest.CatalogueEvent, c *ingest.Channel, samples int, station ingest.Station) (event ingest.CatalogueEvent, ok bool) {
-	if c.Event.Origin.IsZero() {
-		return arriving(events, c, samples, station)
+// asStated is what catalogue and headers state of an event, without what metadata do.
+func asStated(own []db.Statement) db.Event {
+	return takenOf(slices.DeleteFunc(slices.Clone(own), func(st db.Statement) bool { return st.By == db.ByMetadata })).event()
+}
+
+// quake settles which QuakeML event an event of the store is, and states what that
+// one says. The documents at hand are looked through for those that may be it; what may
+// be it is kept, so that it does not matter which document comes first, or in another
+// run.
+func (s *settler) quake(ctx context.Context, id int64) error {
+	held, err := s.tx.Quakes(ctx, id)
+	if err != nil || len(held) == 0 && len(s.quakes) == 0 {
+		return err
 	}
-	own := statedOf(c.Event)
-	nearest := math.Inf(1)
-	for _, e := range around(events, c.Event.Origin, minuteTolerance, minuteTolerance) {
+	subject := db.Subject{Kind: db.SubjectEvent, ID: id}
+	own, err := s.tx.Statements(ctx, subject)
+	if err != nil {
+		return err
+	}
+	as := statedEvent{Event: asStated(own)}
+	for _, e := range around(s.quakes, as.Origin, minuteTolerance, minuteTolerance) {
 		other := statedOf(e.Event)
-		if d, same := difference(&own, &other); same && d < nearest {
-			event, ok, nearest = e, true, d
+		if _, same := difference(&as, &other); same {
+			q := quakeOf(e)
+			if err := s.tx.PutQuake(ctx, id, q); err != nil {
+				return err
+			}
+			held = append(slices.DeleteFunc(held, func(h db.Quake) bool { return h.PublicID == q.PublicID }), q)
 		}
 	}
-	return event, ok
+	key, err := s.tx.EventKey(ctx, id)
+	if err != nil {
+		return err
+	}
+	as.EventKey = key
+	return s.stateQuake(ctx, subject, own, chosen(held, &as))
+}
+
+// quakeOf is a QuakeML event, which always has a time, as it is stored.
+func quakeOf(e ingest.CatalogueEvent) db.Quake {
+	return db.Quake{PublicID: e.PublicID, Event: *eventOf(&ingest.Channel{Event: e.Event})}
+}
+
+// chosen returns the QuakeML event that an event of the store is: the nearest to what
+// is stated of it; where no time is, of those whose waves came the one that gave the
+// event its code, or else the first. It is nil where there is none.
+func chosen(quakes []db.Quake, as *statedEvent) *db.Quake {
+	var best *db.Quake
+	least := math.Inf(1)
+	for i := range quakes {
+		q := &quakes[i]
+		d, same := difference(as, &statedEvent{Event: q.Event})
+		if as.Origin.IsZero() {
+			d, same = 1, q.Came
+			if q.Code == as.EventKey.Code {
+				d = 0
+			}
+		}
+		if same && (d < least || d == least && q.PublicID < best.PublicID) {
+			best, least = q, d
+		}
+	}
+	return best
+}
+
+// stateQuake makes the statements of metadata those of q, nil for none.
+func (s *settler) stateQuake(ctx context.Context, of db.Subject, own []db.Statement, q *db.Quake) error {
+	var say []db.Statement
+	if q != nil {
+		say = quakeAccount(q).statements(db.RecordKey{EventID: of.ID})
+	}
+	for _, st := range own {
+		isSaid := func(other db.Statement) bool { return other.Attribute == st.Attribute }
+		if st.By != db.ByMetadata || slices.ContainsFunc(say, isSaid) {
+			continue
+		}
+		if _, err := s.tx.Unstate(ctx, of, st.Attribute, db.ByMetadata); err != nil {
+			return err
+		}
+		s.touched[of] = true
+	}
+	for _, st := range say {
+		if slices.Contains(own, st) {
+			continue
+		}
+		if _, err := s.tx.State(ctx, st); err != nil {
+			return err
+		}
+		s.touched[of] = true
+	}
+	return nil
+}
+
+// quakeAccount is what a QuakeML event says.
+func quakeAccount(q *db.Quake) account {
+	return account{by: db.ByMetadata, source: q.PublicID, scheme: "metadata", channel: ingest.Channel{Event: ingest.Event{
+		ID: q.PublicID, Name: q.Name, Origin: q.Origin, Latitude: number(q.LatitudeDeg), Longitude: number(q.LongitudeDeg),
+		DepthKM: number(q.DepthKM), Magnitude: number(q.Magnitude), MagnitudeType: q.MagnitudeType,
+	}}}
 }
 
 // around returns the events from before at to after it.
@@ -86,28 +193,24 @@ func statedOf(e ingest.Event) statedEvent {
 // instruments record few, and their waves take longer than the windows of records.
 const furthestKM = 1000
 
-// arriving returns the only event the waves of which came between the first and the last sample of
-// the channel. Several are none: nothing says which.
-func arriving(events []ingest.CatalogueEvent, c *ingest.Channel, samples int, station ingest.Station) (event ingest.CatalogueEvent, ok bool) {
+// arriving returns the events the waves of which came between the first and the last
+// sample of the channel, by time. Of several, nothing says which.
+func arriving(events []ingest.CatalogueEvent, c *ingest.Channel, samples int, station ingest.Station) []ingest.CatalogueEvent {
 	lat, lon := c.Station.Latitude.Or(station.Latitude), c.Station.Longitude.Or(station.Longitude)
 	if c.Start.IsZero() || !lat.Known || !lon.Known {
-		return event, false
+		return nil
 	}
 	end := c.Start.Add(seconds(float64(samples-1) * c.StepS))
-	found := 0
+	var came []ingest.CatalogueEvent
 	for _, e := range around(events, c.Start, seconds(furthestKM/slowestKMS), end.Sub(c.Start)) {
 		depth := e.DepthKM.Value
 		km := math.Hypot(epicentralKM(lat.Value, lon.Value, e.Latitude.Value, e.Longitude.Value), depth)
 		first, last := e.Origin.Add(seconds(km/fastestKMS)), e.Origin.Add(seconds(km/slowestKMS))
 		if km <= furthestKM && !last.Before(c.Start) && !first.After(end) {
-			event = e
-			found++
+			came = append(came, e)
 		}
 	}
-	if found != 1 {
-		return ingest.CatalogueEvent{}, false
-	}
-	return event, true
+	return came
 }
 
 func seconds(s float64) time.Duration { return time.Duration(s * float64(time.Second)) }

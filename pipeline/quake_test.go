@@ -1,9 +1,15 @@
 package pipeline
 
 import (
+	"fmt"
+	"math/rand/v2"
+	"os"
+	"path/filepath"
+	"strings"
 	"testing"
 	"time"
 
+	"swaybook/db"
 	"swaybook/ingest"
 )
 
@@ -15,16 +21,11 @@ func listed(id string, later, lat, lon, magnitude float64) ingest.CatalogueEvent
 	}}
 }
 
-func TestQuakeOf(t *testing.T) {
+func TestArriving(t *testing.T) {
 	// The station is 111 km north of EV1, whose waves take 14 to 45 s.
 	station := ingest.Station{Latitude: ingest.Known(42), Longitude: ingest.Known(14)}
 	starting := func(later float64) ingest.Channel {
 		return ingest.Channel{Station: station, Start: quakeTime.Add(seconds(later)), StepS: 0.01}
-	}
-	said := func(later, lat, magnitude float64) ingest.Channel {
-		c := starting(0)
-		c.Event = listed("", later, lat, 14, magnitude).Event
-		return c
 	}
 	events := []ingest.CatalogueEvent{listed("EV1", 0, 41, 14, 6), listed("EV2", 400, 41, 14, 5), listed("EV3", 420, 41.1, 14, 4.9)}
 	for _, test := range []struct {
@@ -36,15 +37,142 @@ func TestQuakeOf(t *testing.T) {
 		{"it starts within the strong motion", starting(40), "EV1"},
 		{"it starts too late", starting(50), ""},
 		{"it ends too early", starting(-50), ""},
-		{"two events are none", starting(420), ""},
-		{"what it says decides", said(402, 41, 5), "EV2"},
-		{"the nearer one", said(415, 41.1, 5), "EV3"},
-		{"too far apart", said(402, 42, 5), ""},
+		{"two events", starting(420), "EV2 EV3"},
 		{"neither start nor place", ingest.Channel{StepS: 0.01, Start: time.Time{}}, ""},
 	} {
-		got, ok := quakeOf(events, &test.channel, 6001, ingest.Station{})
-		if ok != (test.want != "") || got.PublicID != test.want {
-			t.Errorf("%s: %q, want %q", test.name, got.PublicID, test.want)
+		var got []string
+		for _, e := range arriving(events, &test.channel, 6001, ingest.Station{}) {
+			got = append(got, e.PublicID)
 		}
+		if strings.Join(got, " ") != test.want {
+			t.Errorf("%s: %q, want %q", test.name, got, test.want)
+		}
+	}
+}
+
+func TestChosenQuake(t *testing.T) {
+	quakes := []db.Quake{quakeOf(listed("EV1", 0, 41, 14, 6)), quakeOf(listed("EV2", 400, 41, 14, 5)), quakeOf(listed("EV3", 420, 41.1, 14, 4.9)), quakeOf(listed("EV4", 420, 41.1, 14, 4.9))}
+	quakes[1].Came, quakes[2].Came = true, true
+	said := func(later, lat, magnitude float64) statedEvent {
+		return statedOf(listed("", later, lat, 14, magnitude).Event)
+	}
+	for _, test := range []struct {
+		name string
+		as   statedEvent
+		want string
+	}{
+		{"what is stated decides", said(402, 41, 5), "EV2"},
+		{"the nearer one, of equal ones the first", said(415, 41.1, 5), "EV3"},
+		{"too far apart", said(402, 42, 5), ""},
+		{"no time: the first whose waves came", statedEvent{}, "EV2"},
+		{"no time: the one that gave the code", statedEvent{EventKey: db.EventKey{Code: "EV3"}}, "EV3"},
+		{"no time, and a code of one whose waves did not come", statedEvent{EventKey: db.EventKey{Code: "EV1"}}, "EV2"},
+	} {
+		for range 4 {
+			rand.Shuffle(len(quakes), func(i, j int) { quakes[i], quakes[j] = quakes[j], quakes[i] })
+			got := ""
+			if q := chosen(quakes, &test.as); q != nil {
+				got = q.PublicID
+			}
+			if got != test.want {
+				t.Errorf("%s: %q, want %q", test.name, got, test.want)
+			}
+		}
+	}
+}
+
+// quakeML is a document of one invented event.
+func quakeML(id, name, origin string, lat, lon, magnitude float64) string {
+	return fmt.Sprintf(`<q:quakeml xmlns="http://quakeml.org/xmlns/bed/1.2" xmlns:q="http://quakeml.org/xmlns/quakeml/1.2">
+<eventParameters publicID="smi:example.org/list"><event publicID="%s"><description><text>%s</text><type>earthquake name</type></description>
+<origin publicID="smi:example.org/o"><time><value>%s</value></time><latitude><value>%v</value></latitude><longitude><value>%v</value></longitude>
+</origin><magnitude publicID="smi:example.org/m"><mag><value>%v</value></mag><type>Mw</type></magnitude></event></eventParameters></q:quakeml>`,
+		id, name, origin, lat, lon, magnitude)
+}
+
+// Two files of one event that say it a little differently, each nearest to the event of
+// another document: whichever file and document come first, in one run or in two, what
+// is taken is the event that is nearest to the first file by name.
+func TestOrderOfQuakeMLDoesNotMatter(t *testing.T) {
+	files := map[string]string{
+		"a.NS": knetOf("QVA001", "38.0", "142.0", "7.2", 1), "b.NS": knetOf("QVA002", "38.3", "142.0", "6.6", 2),
+		// Origin times of K-NET are nine hours ahead.
+		"m.xml": quakeML("smi:example.org/m", "Moor", "2041-03-03T23:12:00.5Z", 38.02, 142, 7.1),
+		"h.xml": quakeML("smi:example.org/h", "Heath", "2041-03-03T23:12:00.5Z", 38.28, 142, 6.7),
+		"z.xml": quakeML("smi:example.org/z", "Elsewhere", "2041-03-03T23:12:00.5Z", 20, 142, 7.2),
+	}
+	const want = "20410303T231200 Moor 38.02 M7.1"
+	for _, runs := range [][]string{
+		{"a.NS b.NS m.xml h.xml z.xml"},
+		{"a.NS m.xml h.xml", "b.NS m.xml h.xml"},
+		{"b.NS m.xml h.xml", "a.NS m.xml h.xml"},
+		{"a.NS b.NS m.xml", "a.NS b.NS h.xml"},
+		{"a.NS b.NS h.xml", "a.NS b.NS m.xml"},
+		{"b.NS m.xml h.xml", "a.NS"},
+		{"a.NS b.NS", "a.NS b.NS h.xml m.xml z.xml"},
+		{"a.NS b.NS", "b.NS h.xml", "a.NS m.xml"},
+		{"a.NS b.NS m.xml h.xml", "a.NS b.NS h.xml"},
+		{"a.NS b.NS z.xml", "a.NS h.xml", "b.NS m.xml"},
+	} {
+		dir, store := t.TempDir(), newStore(t)
+		for _, names := range runs {
+			var paths []string
+			for _, name := range strings.Fields(names) {
+				put(t, dir, name, files[name])
+				paths = append(paths, filepath.Join(dir, name))
+			}
+			run(t, store, options(paths...))
+		}
+		for _, c := range componentsOf(t, store) {
+			e := c.Record.Event
+			if got := fmt.Sprint(e.Code, " ", e.Name, " ", *e.LatitudeDeg, " M", *e.Magnitude); got != want {
+				t.Errorf("%q: %s is of %s, want %s", runs, c.Record.Code, got, want)
+			}
+		}
+	}
+}
+
+// A record that knows nothing of its earthquake is of none where the waves of two came,
+// and that is said, whenever the file is named.
+func TestTwoQuakesAtOneTimeAreSaid(t *testing.T) {
+	dir, store := t.TempDir(), newStore(t)
+	for _, name := range []string{"three-channels.mseed", "station.xml", "events.xml"} {
+		data, err := os.ReadFile(filepath.Join("..", "testdata", "records", "miniseed", name))
+		if err != nil {
+			t.Fatal(err)
+		}
+		put(t, dir, name, string(data))
+	}
+	put(t, dir, "other.xml", quakeML("smi:example.org/event/fell", "Fell", "2041-03-04T08:12:02Z", 30.2, 150.2, 5.1))
+	const want = "[the waves of 2 QuakeML events came while it recorded, none of which is taken: " +
+		"smi:example.org/event/tarn2041 (2041-03-04T08:12:00Z), smi:example.org/event/fell (2041-03-04T08:12:02Z)]"
+	for range 2 {
+		var got []string
+		opts := options(dir)
+		opts.Progress = func(p Progress) { got = append(got, p.File.Doubts...) }
+		run(t, store, opts)
+		if fmt.Sprint(got) != want {
+			t.Errorf("got  %v\nwant %s", got, want)
+		}
+	}
+	for _, c := range componentsOf(t, store) {
+		if e := c.Record.Event; e.Name != "" || !e.Origin.IsZero() { // its code is made of the record's time
+			t.Errorf("%s is of %+v", c.Record.Code, c.Record.Event)
+		}
+	}
+	// With one of them alone, it is of that, and later ones do not change it.
+	if err := os.Remove(filepath.Join(dir, "other.xml")); err != nil {
+		t.Fatal(err)
+	}
+	store = newStore(t)
+	run(t, store, options(dir))
+	put(t, dir, "other.xml", quakeML("smi:example.org/event/fell", "Fell", "2041-03-04T08:12:02Z", 30.2, 150.2, 5.1))
+	run(t, store, options(dir))
+	codes := map[string]bool{}
+	for _, c := range componentsOf(t, store) {
+		codes[c.Record.Event.Code+" "+c.Record.Event.Name] = true
+	}
+	if len(codes) != 1 || !codes["tarn2041 Tarn Ridge"] {
+		t.Errorf("with one event and then another: %v", codes)
 	}
 }

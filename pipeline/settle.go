@@ -3,6 +3,7 @@ package pipeline
 import (
 	"context"
 	"fmt"
+	"maps"
 	"slices"
 
 	"swaybook/db"
@@ -16,18 +17,30 @@ import (
 type settler struct {
 	tx       *db.Tx
 	known    map[db.Statement]string // what was stated before, without its source: the least of those
+	quakes   []ingest.CatalogueEvent // of the documents of this run, by time
+	seen     map[int64]bool          // events of which files were seen
 	touched  map[db.Subject]bool
 	settled  map[db.Subject]bool // together with others
 	comparer likeness.Comparer
 }
 
-func newSettler(tx *db.Tx, known map[db.Statement]string) *settler {
-	return &settler{tx: tx, known: known, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{}}
+func newSettler(tx *db.Tx, known map[db.Statement]string, quakes []ingest.CatalogueEvent) *settler {
+	return &settler{tx: tx, known: known, quakes: quakes, seen: map[int64]bool{}, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{}}
 }
 
 // state keeps what the accounts say of a record, its event and its station.
 func (s *settler) state(ctx context.Context, k db.RecordKey, accounts []account) error {
+	if k.EventID != 0 {
+		s.seen[k.EventID] = true
+	}
 	for _, a := range accounts {
+		if a.quake != nil && k.EventID != 0 {
+			q := quakeOf(*a.quake)
+			q.Came = true
+			if err := s.tx.PutQuake(ctx, k.EventID, q); err != nil {
+				return err
+			}
+		}
 		for _, st := range a.statements(k) {
 			if err := s.stateOne(ctx, st); err != nil {
 				return err
@@ -97,6 +110,12 @@ func (s *settler) move(ctx context.Context, held *db.Record, to db.RecordKey) er
 			continue
 		}
 		subject := db.Subject{Kind: m.kind, ID: m.to}
+		if m.kind == db.SubjectEvent {
+			if err := s.tx.CopyQuakes(ctx, m.from, m.to); err != nil {
+				return err
+			}
+			s.seen[m.to] = true
+		}
 		if err := s.tx.CopyStatements(ctx, db.Subject{Kind: m.kind, ID: m.from}, subject); err != nil {
 			return err
 		}
@@ -108,6 +127,11 @@ func (s *settler) move(ctx context.Context, held *db.Record, to db.RecordKey) er
 
 // settle brings events, then stations, then records up to date.
 func (s *settler) settle(ctx context.Context) error {
+	for _, id := range slices.Sorted(maps.Keys(s.seen)) {
+		if err := s.quake(ctx, id); err != nil {
+			return err
+		}
+	}
 	steps := []struct {
 		kind string
 		do   func(context.Context, int64) error

@@ -111,7 +111,7 @@ func settled(t *testing.T, accounts []inventedAccount, batch int) (*db.Store, []
 	for part := range slices.Chunk(accounts, batch) {
 		err := store.Update(t.Context(), func(tx *db.Tx) error {
 			g, err := settleGeneration(t.Context(), tx, testGrid)
-			s := newSettler(tx, known)
+			s := newSettler(tx, known, nil)
 			for _, a := range part {
 				err = errors.Join(err, a.put(t.Context(), tx, s, g))
 			}
@@ -233,24 +233,29 @@ func TestALaterCatalogueReplacesTheEarlier(t *testing.T) {
 	}
 }
 
+// knetOf is an invented file of an earthquake at the station, without a code.
+func knetOf(station, lat, lon, magnitude string, seed uint64) string {
+	rng := rand.New(rand.NewPCG(seed, 1))
+	var b strings.Builder
+	for _, line := range [][2]string{
+		{"Origin Time", "2041/03/04 08:12:00"}, {"Lat.", lat}, {"Long.", lon}, {"Depth. (km)", "10"}, {"Mag.", magnitude},
+		{"Station Code", station}, {"Station Lat.", lat}, {"Station Long.", lon}, {"Station Height(m)", "10"},
+		{"Record Time", "2041/03/04 08:12:30"}, {"Sampling Freq(Hz)", "100Hz"}, {"Duration Time(s)", "1"}, {"Dir.", "N-S"},
+		{"Scale Factor", "2000(gal)/8388608"}, {"Max. Acc. (gal)", ""}, {"Last Correction", ""}, {"Memo.", ""},
+	} {
+		fmt.Fprintf(&b, "%-18s%s\n", line[0], line[1])
+	}
+	for range 100 {
+		fmt.Fprintln(&b, rng.IntN(20000)-10000)
+	}
+	return b.String()
+}
+
 // Two earthquakes of one second, whose headers have no code for them, are two.
 func TestEqualTimesOfTwoEarthquakes(t *testing.T) {
 	dir := t.TempDir()
 	knet := func(name, station, lat, lon, magnitude string, seed uint64) {
-		rng := rand.New(rand.NewPCG(seed, 1))
-		var b strings.Builder
-		for _, line := range [][2]string{
-			{"Origin Time", "2041/03/04 08:12:00"}, {"Lat.", lat}, {"Long.", lon}, {"Depth. (km)", "10"}, {"Mag.", magnitude},
-			{"Station Code", station}, {"Station Lat.", lat}, {"Station Long.", lon}, {"Station Height(m)", "10"},
-			{"Record Time", "2041/03/04 08:12:30"}, {"Sampling Freq(Hz)", "100Hz"}, {"Duration Time(s)", "1"}, {"Dir.", "N-S"},
-			{"Scale Factor", "2000(gal)/8388608"}, {"Max. Acc. (gal)", ""}, {"Last Correction", ""}, {"Memo.", ""},
-		} {
-			fmt.Fprintf(&b, "%-18s%s\n", line[0], line[1])
-		}
-		for range 100 {
-			fmt.Fprintln(&b, rng.IntN(20000)-10000)
-		}
-		put(t, dir, name, b.String())
+		put(t, dir, name, knetOf(station, lat, lon, magnitude, seed))
 	}
 	knet("a.NS", "QVA001", "38.0", "142.0", "7.2", 1)
 	knet("b.NS", "QVA002", "33.0", "131.0", "4.0", 2)
@@ -273,7 +278,7 @@ func TestACatalogueMovesARecordWithItsHeader(t *testing.T) {
 	files := invented()[:1]
 	store, _ := settled(t, files, 1)
 	err := store.Update(t.Context(), func(tx *db.Tx) error {
-		s := newSettler(tx, map[db.Statement]string{})
+		s := newSettler(tx, map[db.Statement]string{}, nil)
 		held := componentsOf(t, store)[0]
 		c := ingest.Channel{Event: ingest.Event{ID: "NEW"}}
 		key, err := tx.PutRecord(t.Context(), recordOf(c, "R1"), true)

@@ -40,7 +40,7 @@ func (w *writer) files(ctx context.Context) error {
 func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 	reports := make([]FileReport, 0, len(batch))
 	err := w.store.Update(ctx, func(tx *db.Tx) error {
-		w.settler = newSettler(tx, w.known)
+		w.settler = newSettler(tx, w.known, w.opts.Hints.Metadata.Events())
 		for _, res := range batch {
 			if res.outcome == opened {
 				if err := tx.ForgetUnread(ctx, res.source.Path, archive.Join(res.source.Path, "")); err != nil {
@@ -110,7 +110,7 @@ func (w *writer) storeHeld(ctx context.Context, tx *db.Tx, res result, report Fi
 	for _, r := range standing {
 		report.Causes = append(report.Causes, Cause{Line: r.Line, Text: r.Cause})
 	}
-	report.Warnings, err = w.describeHeld(ctx, tx, res)
+	err = w.describeHeld(ctx, tx, res, &report)
 	return report, err
 }
 
@@ -160,6 +160,7 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 			report.Records++
 		}
 		report.Warnings = append(report.Warnings, s.channel.Warnings...)
+		report.doubt(s.doubt)
 	}
 	if report.Components == 0 {
 		report.Outcome = Rejected

@@ -211,7 +211,8 @@ type ingestReport struct {
 	Unfit []reasonCount `json:"not_rotated_by_reason"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
-	// Metadata lists what of StationXML and QuakeML was not taken, or is doubtful.
+	// Metadata lists what of StationXML and QuakeML was not taken, or is doubtful, and
+	// the files that were recorded while waves of several QuakeML events came.
 	Metadata        []fileNote `json:"metadata_notes"`
 	MetadataOmitted int        `json:"metadata_notes_omitted"`
 
@@ -266,6 +267,10 @@ func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) i
 	for _, n := range o.pipeline.Hints.Metadata.Notes() {
 		metadata.add(fileNote{n.Path, n.Line, n.Text})
 	}
+	for _, f := range m.doubts.files {
+		metadata.add(f)
+	}
+	metadata.omitted += m.doubts.omitted
 	r.Metadata, r.MetadataOmitted = metadata.files, metadata.omitted
 	slices.SortStableFunc(r.ByCause, func(a, b causeCount) int { return b.Count - a.Count })
 	if c := o.pipeline.Catalogue; c != nil {

@@ -35,6 +35,7 @@ type monitor struct {
 	logged   time.Time
 
 	skipped, rejected notes
+	doubts            notes          // of earthquakes
 	causes            map[string]int // rejections by cause
 	warnings, unfit   tally          // unfit: why pairs were not rotated
 }
@@ -128,6 +129,9 @@ func (m *monitor) note(f pipeline.FileReport) {
 	for _, c := range f.Causes {
 		m.rejected.add(fileNote{Source: f.Path, Line: c.Line, Cause: c.Text})
 		m.causes[general(c.Text)]++
+	}
+	for _, text := range f.Doubts {
+		m.doubts.add(fileNote{Source: f.Path, Cause: text})
 	}
 	for _, text := range f.Warnings {
 		m.warnings.add(text, f.Path, "")

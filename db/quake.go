@@ -1,0 +1,65 @@
+package db
+
+import (
+	"context"
+	"fmt"
+)
+
+// Quake is an event of a QuakeML document that may be an event of the store.
+type Quake struct {
+	PublicID string
+	Came     bool // its waves reached a station while a record of the event ran
+	Event         // Code is that which it gives
+}
+
+// PutQuake stores that q may be the event, as it is stated now. What came stays so.
+func (t *Tx) PutQuake(ctx context.Context, eventID int64, q Quake) error {
+	err := t.exec(ctx, `INSERT INTO quake
+			(event_id, public_id, code, came, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude, magnitude_type)
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?) ON CONFLICT DO UPDATE SET came = max(came, excluded.came), name = excluded.name,
+			origin_time = excluded.origin_time, latitude_deg = excluded.latitude_deg, longitude_deg = excluded.longitude_deg,
+			depth_km = excluded.depth_km, magnitude = excluded.magnitude, magnitude_type = excluded.magnitude_type`,
+		eventID, q.PublicID, q.Code, q.Came, textOrNull(q.Name), timeText(q.Origin), q.LatitudeDeg, q.LongitudeDeg, q.DepthKM, q.Magnitude,
+		textOrNull(q.MagnitudeType))
+	if err != nil {
+		return fmt.Errorf("store QuakeML event %s: %w", q.PublicID, err)
+	}
+	return nil
+}
+
+// Quakes returns the QuakeML events that may be the event, by public identifier.
+func (t *Tx) Quakes(ctx context.Context, eventID int64) ([]Quake, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT public_id, code, came, coalesce(name, ''), origin_time, latitude_deg, longitude_deg, depth_km,
+		magnitude, coalesce(magnitude_type, '') FROM quake WHERE event_id = ? ORDER BY public_id`, eventID)
+	if err != nil {
+		return nil, fmt.Errorf("read QuakeML events: %w", err)
+	}
+	type row struct {
+		Quake
+		origin string
+	}
+	found, err := collect(rows, func(q *row) []any {
+		return []any{&q.PublicID, &q.Code, &q.Came, &q.Name, &q.origin, &q.LatitudeDeg, &q.LongitudeDeg, &q.DepthKM, &q.Magnitude, &q.MagnitudeType}
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read QuakeML events: %w", err)
+	}
+	out := make([]Quake, len(found))
+	for i, q := range found {
+		if q.Origin, err = parseTime(q.origin); err != nil {
+			return nil, err
+		}
+		out[i] = q.Quake
+	}
+	return out, nil
+}
+
+// CopyQuakes gives an event the QuakeML events that may be another one.
+func (t *Tx) CopyQuakes(ctx context.Context, from, to int64) error {
+	err := t.exec(ctx, `INSERT INTO quake SELECT ?, public_id, code, came, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude,
+		magnitude_type FROM quake WHERE event_id = ? ON CONFLICT DO NOTHING`, to, from)
+	if err != nil {
+		return fmt.Errorf("copy QuakeML events: %w", err)
+	}
+	return nil
+}
