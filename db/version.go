@@ -31,15 +31,23 @@ const versionColumns = `c.id, c.record_id, r.code, r.instrument, r.siting, c.rol
 
 // Related returns the records that may hold the same motions as this one, itself
 // included: records of one event at a station of the same code, records with a
-// component of equal samples, and those that were found to.
+// component of equal samples of which events and stations do not say otherwise, and
+// those that were found to.
 func (t *Tx) Related(ctx context.Context, recordID int64) ([]int64, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT ?1
-		UNION SELECT other.id FROM record this JOIN station s ON s.id = this.station_id JOIN station same ON same.code = s.code
-			JOIN record other ON other.station_id = same.id JOIN event e ON e.id = this.event_id JOIN event f ON f.id = other.event_id
-			WHERE this.id = ?1 AND coalesce(f.primary_id, f.id) = coalesce(e.primary_id, e.id)
-				AND (same.network = s.network OR same.network = '' OR s.network = '')
-		UNION SELECT o.record_id FROM component c JOIN series x ON x.component_id = c.id JOIN series y ON y.sha256 = x.sha256
-			JOIN component o ON o.id = y.component_id WHERE c.record_id = ?1
+	// The cross joins keep the order: from the codes of one event and of one station to
+	// the records of both, of which either alone may have thousands.
+	rows, err := t.tx.QueryContext(ctx, `WITH this AS (
+			SELECT r.id, r.event_id, r.station_id, coalesce(e.primary_id, e.id) AS quake, s.network, s.code
+			FROM record r LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id WHERE r.id = ?1)
+		SELECT ?1
+		UNION SELECT other.id FROM this CROSS JOIN event f ON f.id = this.quake OR f.primary_id = this.quake
+			CROSS JOIN station same ON same.code = this.code AND (same.network = this.network OR same.network = '' OR this.network = '')
+			CROSS JOIN record other ON other.event_id = f.id AND other.station_id = same.id
+		UNION SELECT o.record_id FROM this CROSS JOIN component c ON c.record_id = this.id CROSS JOIN series x ON x.component_id = c.id
+			CROSS JOIN series y ON y.sha256 = x.sha256 CROSS JOIN component o ON o.id = y.component_id CROSS JOIN record r ON r.id = o.record_id
+			LEFT JOIN event f ON f.id = r.event_id LEFT JOIN station s ON s.id = r.station_id
+			WHERE (f.id IS NULL OR this.quake IS NULL OR coalesce(f.primary_id, f.id) = this.quake)
+				AND (s.code IS NULL OR this.code IS NULL OR s.code = this.code)
 		UNION SELECT o.record_id FROM component c JOIN component o ON o.motion_id = c.motion_id WHERE c.record_id = ?1`, recordID)
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)

@@ -32,6 +32,10 @@ ALTER TABLE record ADD COLUMN hypocentral_km REAL;
 ALTER TABLE record ADD COLUMN rupture_km REAL;
 ALTER TABLE record ADD COLUMN jb_km REAL;
 
+-- The records of an event at a station: of either alone there may be thousands.
+DROP INDEX record_event;
+CREATE INDEX record_event ON record (event_id, station_id);
+
 -- How alike the samples of two components are that may be one motion: of one
 -- event, station and direction, or of equal samples, as they are and between two
 -- corners (package likeness). first_id < second_id.

@@ -50,6 +50,16 @@ type solved struct {
 	spectra  db.Spectra
 }
 
+// quake is the QuakeML event whose waves came while the channel recorded, nil for none.
+func (s *solved) quake() *ingest.CatalogueEvent {
+	for _, a := range s.accounts {
+		if a.quake != nil {
+			return a.quake
+		}
+	}
+	return nil
+}
+
 // reader turns files into results. It is shared by the workers.
 type reader struct {
 	store     Store

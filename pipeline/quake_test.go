@@ -1,6 +1,7 @@
 package pipeline
 
 import (
+	"errors"
 	"fmt"
 	"math/rand/v2"
 	"os"
@@ -174,5 +175,35 @@ func TestTwoQuakesAtOneTimeAreSaid(t *testing.T) {
 	}
 	if len(codes) != 1 || !codes["tarn2041 Tarn Ridge"] {
 		t.Errorf("with one event and then another: %v", codes)
+	}
+}
+
+// Two authorities have an event of one number: two earthquakes are two.
+func TestEqualCodesOfTwoQuakes(t *testing.T) {
+	store := newStore(t)
+	quakes := []ingest.CatalogueEvent{listed("smi:a/17", 0, 41, 14, 6), listed("smi:b/17", 9000, -20, 100, 5)}
+	for i := range quakes {
+		quakes[i].ID = "17"
+	}
+	for n, i := range []int{0, 1, 0, 1} {
+		err := store.Update(t.Context(), func(tx *db.Tx) error {
+			g, err := settleGeneration(t.Context(), tx, testGrid)
+			s := newSettler(tx, map[db.Statement]string{}, nil)
+			c := ingest.Channel{Event: quakes[i].Event}
+			err = errors.Join(err, s.distinguish(t.Context(), &c, &quakes[i]))
+			a := header(fmt.Sprint("R", n), fmt.Sprint(n), c.Event, ingest.Station{})
+			return errors.Join(err, a.put(t.Context(), tx, s, g),
+				s.state(t.Context(), db.RecordKey{ID: int64(n + 1), EventID: int64(i + 1)}, []account{{by: db.ByMetadata, quake: &quakes[i]}}), s.settle(t.Context()))
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+	}
+	var got []string
+	for _, c := range componentsOf(t, store) {
+		got = append(got, fmt.Sprint(c.Record.Code, " ", c.Record.Event.Code, " ", *c.Record.Event.Magnitude))
+	}
+	if want := "[R0 17 6 R1 17-2 5 R2 17 6 R3 17-2 5]"; fmt.Sprint(got) != want {
+		t.Errorf("got  %v\nwant %s", got, want)
 	}
 }

@@ -20,12 +20,15 @@ type settler struct {
 	quakes   []ingest.CatalogueEvent // of the documents of this run, by time
 	seen     map[int64]bool          // events of which files were seen
 	touched  map[db.Subject]bool
-	settled  map[db.Subject]bool // together with others
+	settled  map[db.Subject]bool     // together with others
+	codes    map[string]*statedEvent // events by code, as headers state them
+	read     map[int64]*ownEvent     // events as they are settled
 	comparer likeness.Comparer
 }
 
 func newSettler(tx *db.Tx, known map[db.Statement]string, quakes []ingest.CatalogueEvent) *settler {
-	return &settler{tx: tx, known: known, quakes: quakes, seen: map[int64]bool{}, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{}}
+	return &settler{tx: tx, known: known, quakes: quakes, seen: map[int64]bool{}, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{},
+		codes: map[string]*statedEvent{}, read: map[int64]*ownEvent{}}
 }
 
 // state keeps what the accounts say of a record, its event and its station.
@@ -74,28 +77,80 @@ func (s *settler) stateOne(ctx context.Context, st db.Statement) error {
 }
 
 // distinguish gives a channel whose event has no code but its origin time another
-// one where that is held by an earthquake of another place or size: its time with a
-// number.
-func (s *settler) distinguish(ctx context.Context, c *ingest.Channel) error {
-	code := ingest.EventCode(c)
+// one where that is held by an earthquake of another place or size, by its headers: its
+// time with a number. It does so, too, where the code is that of the QuakeML event q
+// and held by another one: authorities number their events alike.
+func (s *settler) distinguish(ctx context.Context, c *ingest.Channel, q *ingest.CatalogueEvent) error {
+	if q != nil && c.Event == q.Event {
+		return s.distinguishQuake(ctx, c, q)
+	}
 	if c.Event.ID != "" || c.Event.Origin.IsZero() {
 		return nil
 	}
+	first := ingest.EventCode(c)
 	mine := statedOf(c.Event)
-	for n := 2; ; n++ {
+	for n, code := 2, first; ; n++ {
+		other, err := s.ofCode(ctx, code)
+		if err != nil || other == nil {
+			return err
+		}
+		if !contradict(&mine, other) {
+			other.complete(&mine)
+			return nil
+		}
+		code = fmt.Sprintf("%s-%d", first, n)
+		c.Event.ID = code
+	}
+}
+
+func (s *settler) distinguishQuake(ctx context.Context, c *ingest.Channel, q *ingest.CatalogueEvent) error {
+	first := ingest.EventCode(c)
+	for n, code := 2, first; ; n++ {
 		held, ok, err := s.tx.FindEvent(ctx, code)
 		if err != nil || !ok {
 			return err
 		}
-		own, err := s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: held.ID})
+		quakes, err := s.tx.Quakes(ctx, held.ID)
 		if err != nil {
 			return err
 		}
-		if other := stated(held, own); !contradict(&mine, &other) {
+		isIt := func(h db.Quake) bool { return h.PublicID == q.PublicID }
+		gaveCode := func(h db.Quake) bool { return h.Came && h.Code == first }
+		if slices.ContainsFunc(quakes, isIt) || !slices.ContainsFunc(quakes, gaveCode) {
 			return nil
 		}
-		code = fmt.Sprintf("%s-%d", ingest.EventCode(&ingest.Channel{Event: ingest.Event{Origin: c.Event.Origin}}), n)
+		code = fmt.Sprintf("%s-%d", first, n)
 		c.Event.ID = code
+	}
+}
+
+// ofCode returns the event of this code by what headers state of it, nil where there is
+// none. It is read once a batch.
+func (s *settler) ofCode(ctx context.Context, code string) (*statedEvent, error) {
+	if e := s.codes[code]; e != nil {
+		return e, nil
+	}
+	held, ok, err := s.tx.FindEvent(ctx, code)
+	if err != nil || !ok {
+		return nil, err
+	}
+	own, err := s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: held.ID})
+	if err != nil {
+		return nil, err
+	}
+	e := stated(held, slices.DeleteFunc(own, func(st db.Statement) bool { return st.By != db.ByHeader }))
+	s.codes[code] = &e
+	return &e, nil
+}
+
+// complete takes the place and the magnitude of another that is the same where e has
+// none.
+func (e *statedEvent) complete(other *statedEvent) {
+	if e.LatitudeDeg == nil {
+		e.LatitudeDeg, e.LongitudeDeg = other.LatitudeDeg, other.LongitudeDeg
+	}
+	if e.Magnitude == nil {
+		e.Magnitude = other.Magnitude
 	}
 }
 
@@ -163,16 +218,20 @@ func (s *settler) ofKind(kind string) []int64 {
 
 // event settles the event and all that may be the same earthquake.
 func (s *settler) event(ctx context.Context, id int64) error {
-	events, statements, err := s.neighbours(ctx, id)
+	found, err := s.neighbours(ctx, id)
 	if err != nil {
 		return err
+	}
+	events := make([]statedEvent, len(found))
+	for i, e := range found {
+		events[i] = e.statedEvent
 	}
 	stands := associate(events)
 	for i := range events {
 		var all []db.Statement
 		for j := range events {
 			if stands[j] == stands[i] {
-				all = append(all, statements[j]...)
+				all = append(all, found[j].statements...)
 			}
 		}
 		db.SortStatements(all)
@@ -188,38 +247,68 @@ func (s *settler) event(ctx context.Context, id int64) error {
 	return nil
 }
 
-// neighbours returns the event and all that are connected with it: by an
-// identifier, by having stood for one another, or by own origin times within the
-// tolerance of one another; each by its own statements.
-func (s *settler) neighbours(ctx context.Context, id int64) (events []statedEvent, statements [][]db.Statement, err error) {
+// ownEvent is an event with its own statements.
+type ownEvent struct {
+	statedEvent
+	statements []db.Statement
+}
+
+// neighbours returns the event and all that are connected with it, each by its own
+// statements: by having stood for one another, or by being the same earthquake by what
+// both state. What associate says of an event depends on no others.
+func (s *settler) neighbours(ctx context.Context, id int64) ([]*ownEvent, error) {
+	var out []*ownEvent
 	seen := map[int64]bool{}
-	add := func(keys []db.EventKey, err error) error {
+	add := func(keys []db.EventKey, beside *ownEvent) error {
 		for _, k := range keys {
-			if err != nil || seen[k.ID] {
+			if seen[k.ID] {
 				continue
 			}
+			e, err := s.own(ctx, k)
+			if err != nil {
+				return err
+			}
+			if beside != nil {
+				if _, same := difference(&beside.statedEvent, &e.statedEvent); !same {
+					continue
+				}
+			}
 			seen[k.ID] = true
-			var own []db.Statement
-			if own, err = s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: k.ID}); err == nil {
-				events, statements = append(events, stated(k, own)), append(statements, own)
+			out = append(out, e)
+		}
+		return nil
+	}
+	alike, err := s.tx.EventsAlike(ctx, id)
+	if err == nil {
+		err = add(alike, nil)
+	}
+	for i := 0; err == nil && i < len(out); i++ { // add appends
+		if at := out[i].Origin; !at.IsZero() {
+			var near []db.EventKey
+			if near, err = s.tx.EventsWithin(ctx, at.Add(-minuteTolerance), at.Add(minuteTolerance)); err == nil {
+				err = add(near, out[i])
 			}
 		}
-		return err
-	}
-	if err := add(s.tx.EventsAlike(ctx, id)); err != nil {
-		return nil, nil, err
-	}
-	for i := 0; i < len(events); i++ { // add appends
-		if at := events[i].Origin; !at.IsZero() {
-			if err := add(s.tx.EventsWithin(ctx, at.Add(-minuteTolerance), at.Add(minuteTolerance))); err != nil {
-				return nil, nil, err
+		if err == nil {
+			if alike, err = s.tx.EventsAlike(ctx, out[i].ID); err == nil {
+				err = add(alike, nil)
 			}
 		}
-		if err := add(s.tx.EventsAlike(ctx, events[i].ID)); err != nil {
-			return nil, nil, err
-		}
 	}
-	return events, statements, nil
+	return out, err
+}
+
+// own reads an event by its own statements, once: none comes while events are settled.
+func (s *settler) own(ctx context.Context, k db.EventKey) (*ownEvent, error) {
+	if e, ok := s.read[k.ID]; ok {
+		return e, nil
+	}
+	statements, err := s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: k.ID})
+	if err != nil {
+		return nil, err
+	}
+	s.read[k.ID] = &ownEvent{stated(k, statements), statements}
+	return s.read[k.ID], nil
 }
 
 // stated is an event by its own statements.

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"hash/fnv"
 	"math"
 	"math/rand/v2"
 	"slices"
@@ -145,7 +146,9 @@ func (a inventedAccount) put(ctx context.Context, tx *db.Tx, s *settler, g db.Ge
 	if err != nil {
 		return err
 	}
-	data, digest := db.EncodeSamples([]float64{0, 1}, 1)
+	sum := fnv.New32a()
+	sum.Write([]byte(a.account.source))
+	data, digest := db.EncodeSamples([]float64{0, float64(sum.Sum32())}, 1) // no two alike
 	spectra := db.NewSpectra([][]float64{{1, 1, 1}, {1, 1, 1}}, nil)
 	c := db.Component{Role: db.RoleH1, Axis: "horizontal", StepS: 0.01, Samples: 2, SourceID: source}
 	return errors.Join(tx.AddComponent(ctx, key.ID, c, data, digest, g.ID, spectra), s.state(ctx, key, []account{a.account}))
@@ -208,6 +211,48 @@ func TestChainsSettleAlike(t *testing.T) {
 		if _, got := settled(t, accounts, 1+rng.IntN(3)); !slices.Equal(got, want) {
 			t.Fatalf("got  %s\nwant %s", strings.Join(got, "\n     "), strings.Join(want, "\n     "))
 		}
+	}
+}
+
+// Swarms in which any event may be another by time, place and magnitude, some of whole
+// minutes and some with codes: which come first, or in one batch, does not matter.
+func TestSwarmsSettleAlike(t *testing.T) {
+	rng := rand.New(rand.NewPCG(11, 12))
+	joined := 0
+	for range 12 {
+		var accounts []inventedAccount
+		for i, second := range rng.Perm(150)[:14] {
+			e := ingest.Event{Origin: quakeTime.Add(time.Duration(second) * time.Second)}
+			if i%5 == 0 {
+				e.Origin = e.Origin.Truncate(time.Minute).Add(time.Duration(i%2) * time.Minute)
+			}
+			if i%4 == 0 {
+				e.ID = fmt.Sprintf("EV%d", i)
+			}
+			if i%3 != 0 {
+				e.Latitude, e.Longitude = ingest.Known(41+0.5*rng.Float64()), ingest.Known(14)
+			}
+			if i%2 == 0 {
+				e.Magnitude = ingest.Known(4 + 1.5*rng.Float64())
+			}
+			accounts = append(accounts, header(fmt.Sprintf("R%02d", i), fmt.Sprint(rng.IntN(1000), i), e, ingest.Station{}))
+		}
+		_, want := settled(t, accounts, len(accounts))
+		for i, line := range want {
+			if code := strings.Fields(line)[1]; code != ingest.EventCode(&accounts[i].account.channel) {
+				joined++
+			}
+		}
+		for range 3 {
+			shuffled := slices.Clone(accounts)
+			rng.Shuffle(len(shuffled), func(i, j int) { shuffled[i], shuffled[j] = shuffled[j], shuffled[i] })
+			if _, got := settled(t, shuffled, 1+rng.IntN(4)); !slices.Equal(got, want) {
+				t.Fatalf("got  %s\nwant %s", strings.Join(got, "\n     "), strings.Join(want, "\n     "))
+			}
+		}
+	}
+	if joined < 12 {
+		t.Errorf("only %d events joined another", joined)
 	}
 }
 
