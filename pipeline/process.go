@@ -39,25 +39,16 @@ type result struct {
 
 // solved is one channel with what was computed of it.
 type solved struct {
-	channel  ingest.Channel // without samples
-	stated   ingest.Channel // what the catalogue says of it, and nothing else
-	matched  bool           // whether the catalogue says anything
-	accounts []account      // what everybody says of its event, station and record
-	doubt    string         // why metadata do not tell its earthquake
+	channel  ingest.Channel         // without samples
+	stated   ingest.Channel         // what the catalogue says of it, and nothing else
+	matched  bool                   // whether the catalogue says anything
+	accounts []account              // what everybody says of its event, station and record
+	quake    *ingest.CatalogueEvent // the QuakeML event that gave it its event, nil for none
+	doubt    string                 // why metadata do not tell its earthquake
 	samples  int
 	data     []byte // compressed samples
 	digest   string
 	spectra  db.Spectra
-}
-
-// quake is the QuakeML event whose waves came while the channel recorded, nil for none.
-func (s *solved) quake() *ingest.CatalogueEvent {
-	for _, a := range s.accounts {
-		if a.quake != nil {
-			return a.quake
-		}
-	}
-	return nil
 }
 
 // reader turns files into results. It is shared by the workers.
@@ -135,22 +126,34 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	}
 	res.outcome, res.refused = Stored, refused
 	for i := range channels {
-		accounts := []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: withoutSamples(channels[i])}}
-		described, doubt := metadataAccounts(r.hints.Metadata, &channels[i], len(channels[i].Acceleration))
-		accounts = append(accounts, described...)
-		stated, matched := r.describe(file, res.stem, &channels[i])
-		s, err := r.solve(channels[i])
-		s.stated, s.matched, s.accounts, s.doubt = stated, matched, accounts, doubt
-		if matched {
-			s.accounts = append(s.accounts, catalogueAccount(stated))
-		}
-		if err != nil {
+		s := r.tell(file, format, res.stem, &channels[i])
+		if err := r.solve(&s, channels[i]); err != nil {
 			res.refused = append(res.refused, &ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
 			continue
 		}
 		res.channels = append(res.channels, s)
 	}
 	return res
+}
+
+// tell describes the channel by all who speak of it. Where headers and catalogue know
+// nothing of its earthquake, it is of the QuakeML event whose waves came, and the rows of
+// the catalogue for that one count.
+func (r *reader) tell(file ingest.Found, format, stem string, c *ingest.Channel) solved {
+	header := *c
+	s := solved{accounts: []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: withoutSamples(header)}}}
+	s.stated, s.matched = r.describe(file, stem, c)
+	accounts, doubt := metadataAccounts(r.hints.Metadata, c, len(c.Acceleration))
+	if q := quakeIn(accounts); q != nil && isWithoutEvent(c) {
+		*c, s.quake = header, q
+		c.Event = q.Event
+		s.stated, s.matched = r.describe(file, stem, c)
+	}
+	s.accounts, s.doubt = append(s.accounts, accounts...), doubt
+	if s.matched {
+		s.accounts = append(s.accounts, catalogueAccount(s.stated))
+	}
+	return s
 }
 
 // describe completes what the file's content says by the catalogue, which has the
@@ -168,16 +171,17 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 	return r.catalogue.Apply(file.Rel, c)
 }
 
-func (r *reader) solve(c ingest.Channel) (solved, error) {
+// solve completes s by what is computed of the channel.
+func (r *reader) solve(s *solved, c ingest.Channel) error {
 	solver, err := r.solvers.Get(c.StepS)
 	if err != nil {
-		return solved{}, err
+		return err
 	}
 	var peaks spectrum.GroundPeaks
 	peaks.PGA, peaks.PGV, peaks.PGD = spectrum.Peaks(c.StepS, c.Acceleration)
-	s := solved{channel: withoutSamples(c), samples: len(c.Acceleration), spectra: r.solvers.spectra(solver.SD(nil, c.Acceleration), peaks)}
+	s.channel, s.samples, s.spectra = withoutSamples(c), len(c.Acceleration), r.solvers.spectra(solver.SD(nil, c.Acceleration), peaks)
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
-	return s, nil
+	return nil
 }
 
 // catalogueAccount is what the catalogue says of a channel.

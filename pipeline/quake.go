@@ -11,9 +11,9 @@ import (
 	"swaybook/ingest"
 )
 
-// The velocities between which the strong part of a ground motion travels, in
-// km/s: that of P waves in the crust and upper mantle is below the first, surface waves are slower
-// than S waves, but not than the second.
+// The velocities between which the strong part of a ground motion travels, in km/s:
+// that of P waves in the crust and upper mantle is below the first, surface waves are
+// slower than S waves, but not than the second.
 //
 // No source defines them; they are common practice.
 const (
@@ -23,9 +23,8 @@ const (
 
 // metadataAccounts are what StationXML and QuakeML say of a channel of so many
 // samples. A channel that states no origin time may be of the QuakeML event whose waves
-// came while it recorded, and is given it where it knows nothing of its earthquake. Of
-// any other, the QuakeML event is found by what all its files state (settler.quake).
-// doubt says why none of several was taken.
+// came while it recorded. Of any other, the QuakeML event is found by what all its files
+// state (settler.quake). doubt says why none of several was taken.
 func metadataAccounts(m *ingest.Metadata, c *ingest.Channel, samples int) (accounts []account, doubt string) {
 	if m.IsEmpty() {
 		return nil, ""
@@ -38,9 +37,6 @@ func metadataAccounts(m *ingest.Metadata, c *ingest.Channel, samples int) (accou
 		switch {
 		case len(came) == 1:
 			ok, said.quake = true, &came[0]
-			if isWithoutEvent(c) {
-				c.Event = came[0].Event
-			}
 		case len(came) > 1:
 			doubt = fmt.Sprintf("the waves of %d QuakeML events came while it recorded, none of which is taken: %s", len(came), namesOf(came))
 		}
@@ -49,6 +45,16 @@ func metadataAccounts(m *ingest.Metadata, c *ingest.Channel, samples int) (accou
 		return nil, doubt
 	}
 	return []account{said}, doubt
+}
+
+// quakeIn returns the QuakeML event whose waves came, nil for none.
+func quakeIn(accounts []account) *ingest.CatalogueEvent {
+	for _, a := range accounts {
+		if a.quake != nil {
+			return a.quake
+		}
+	}
+	return nil
 }
 
 // namesOf names the first of several events.
@@ -73,8 +79,10 @@ func isWithoutEvent(c *ingest.Channel) bool {
 }
 
 // asStated is what catalogue and headers state of an event, without what metadata do.
-func asStated(own []db.Statement) db.Event {
-	return takenOf(slices.DeleteFunc(slices.Clone(own), func(st db.Statement) bool { return st.By == db.ByMetadata })).event()
+func asStated(own []db.Statement) db.Event { return takenOf(withoutMetadata(own)).event() }
+
+func withoutMetadata(own []db.Statement) []db.Statement {
+	return slices.DeleteFunc(slices.Clone(own), func(st db.Statement) bool { return st.By == db.ByMetadata })
 }
 
 // quake settles which QuakeML event an event of the store is, and states what that

@@ -1,11 +1,13 @@
 package pipeline
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -206,4 +208,82 @@ func TestEqualCodesOfTwoQuakes(t *testing.T) {
 	if want := "[R0 17 6 R1 17-2 5 R2 17 6 R3 17-2 5]"; fmt.Sprint(got) != want {
 		t.Errorf("got  %v\nwant %s", got, want)
 	}
+}
+
+// A QuakeML event has the code of another earthquake that a header or the catalogue
+// names: they are two, whichever comes first, and one where both state the same.
+func TestEqualCodesOfQuakeMLAndOthers(t *testing.T) {
+	const there, elsewhere, unknown = "there", "elsewhere", "unknown"
+	quake := listed("smi:a/17", 0, 41, 14, 6)
+	quake.ID = "17"
+	events := map[string]ingest.Event{there: listed("17", 5, 41.1, 14, 6.2).Event, elsewhere: listed("17", 9000, -20, 100, 5).Event, unknown: {ID: "17"}}
+	for _, test := range []struct {
+		by, where string
+		first     bool // whether the QuakeML event comes first
+		want      string
+	}{
+		{db.ByHeader, elsewhere, false, "[header 17 M5 metadata 17-2 M6 metadata 17-2 M6 header 17 M5]"},
+		{db.ByHeader, elsewhere, true, "[metadata 17 M6 header 17-2 M5 header 17-2 M5 metadata 17 M6]"},
+		{db.ByCatalogue, elsewhere, false, "[catalogue 17 M5 metadata 17-2 M6 metadata 17-2 M6 catalogue 17 M5]"},
+		{db.ByCatalogue, elsewhere, true, "[metadata 17 M6 catalogue 17-2 M5 catalogue 17-2 M5 metadata 17 M6]"},
+		// What is stated of it comes from both; of its magnitude the catalogue's outranks QuakeML's.
+		{db.ByHeader, there, false, "[header 17 M6 metadata 17 M6 metadata 17 M6 header 17 M6]"},
+		{db.ByHeader, there, true, "[metadata 17 M6 header 17 M6 header 17 M6 metadata 17 M6]"},
+		{db.ByCatalogue, there, false, "[catalogue 17 M6.2 metadata 17 M6.2 metadata 17 M6.2 catalogue 17 M6.2]"},
+		{db.ByCatalogue, there, true, "[metadata 17 M6.2 catalogue 17 M6.2 catalogue 17 M6.2 metadata 17 M6.2]"},
+		{db.ByHeader, unknown, false, "[header 17 M6 metadata 17 M6 metadata 17 M6 header 17 M6]"},
+		{db.ByHeader, unknown, true, "[metadata 17 M6 header 17 M6 header 17 M6 metadata 17 M6]"},
+	} {
+		order := []string{test.by, db.ByMetadata, db.ByMetadata, test.by}
+		if test.first {
+			order = []string{db.ByMetadata, test.by, test.by, db.ByMetadata}
+		}
+		for _, batch := range []int{1, 4} { // what is read of an event once is read again when more is stated
+			store := newStore(t)
+			at := 0
+			for part := range slices.Chunk(order, batch) {
+				err := store.Update(t.Context(), func(tx *db.Tx) error {
+					g, err := settleGeneration(t.Context(), tx, testGrid)
+					s := newSettler(tx, map[db.Statement]string{}, []ingest.CatalogueEvent{quake})
+					for _, by := range part {
+						err = errors.Join(err, putOf(t.Context(), tx, s, g, at, by, events[test.where], &quake))
+						at++
+					}
+					return errors.Join(err, s.settle(t.Context()))
+				})
+				if err != nil {
+					t.Fatal(err)
+				}
+			}
+			var got []string
+			for i, c := range componentsOf(t, store) {
+				got = append(got, fmt.Sprint(order[i], " ", c.Record.Event.Code, " M", *c.Record.Event.Magnitude))
+			}
+			if fmt.Sprint(got) != test.want {
+				t.Errorf("%s %s, %d a batch:\ngot  %v\nwant %s", test.by, test.where, batch, got, test.want)
+			}
+		}
+	}
+}
+
+// putOf stores one more record, of the QuakeML event or of the event that a header or
+// the catalogue states.
+func putOf(ctx context.Context, tx *db.Tx, s *settler, g db.Generation, n int, by string, e ingest.Event, quake *ingest.CatalogueEvent) error {
+	c, given := ingest.Channel{Event: e}, (*ingest.CatalogueEvent)(nil)
+	said := account{by: by, source: fmt.Sprint(n), channel: c}
+	switch by {
+	case db.ByHeader:
+		said.scheme = "esm"
+	case db.ByMetadata:
+		c.Event, given = quake.Event, quake
+		said = account{by: by, source: "metadata", quake: quake}
+	}
+	if err := s.distinguish(ctx, &c, given); err != nil {
+		return err
+	}
+	key, err := tx.PutRecord(ctx, recordOf(c, fmt.Sprint("R", n)), false)
+	if err != nil {
+		return err
+	}
+	return errors.Join(addComponent(ctx, tx, key, fmt.Sprint(n), g), s.state(ctx, key, []account{said}))
 }

@@ -20,15 +20,15 @@ type settler struct {
 	quakes   []ingest.CatalogueEvent // of the documents of this run, by time
 	seen     map[int64]bool          // events of which files were seen
 	touched  map[db.Subject]bool
-	settled  map[db.Subject]bool     // together with others
-	codes    map[string]*statedEvent // events by code, as headers state them
-	read     map[int64]*ownEvent     // events as they are settled
+	settled  map[db.Subject]bool  // together with others
+	held     map[int64]*heldEvent // events to which channels may belong
+	read     map[int64]*ownEvent  // events as they are settled
 	comparer likeness.Comparer
 }
 
 func newSettler(tx *db.Tx, known map[db.Statement]string, quakes []ingest.CatalogueEvent) *settler {
 	return &settler{tx: tx, known: known, quakes: quakes, seen: map[int64]bool{}, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{},
-		codes: map[string]*statedEvent{}, read: map[int64]*ownEvent{}}
+		held: map[int64]*heldEvent{}, read: map[int64]*ownEvent{}}
 }
 
 // state keeps what the accounts say of a record, its event and its station.
@@ -43,6 +43,7 @@ func (s *settler) state(ctx context.Context, k db.RecordKey, accounts []account)
 			if err := s.tx.PutQuake(ctx, k.EventID, q); err != nil {
 				return err
 			}
+			delete(s.held, k.EventID)
 		}
 		for _, st := range a.statements(k) {
 			if err := s.stateOne(ctx, st); err != nil {
@@ -72,85 +73,110 @@ func (s *settler) stateOne(ctx context.Context, st db.Statement) error {
 	}
 	if isNew {
 		s.touched[st.Subject] = true
+		if st.Kind == db.SubjectEvent {
+			delete(s.held, st.ID)
+		}
 	}
 	return nil
 }
 
-// distinguish gives a channel whose event has no code but its origin time another
-// one where that is held by an earthquake of another place or size, by its headers: its
-// time with a number. It does so, too, where the code is that of the QuakeML event q
-// and held by another one: authorities number their events alike.
+// distinguish gives a channel another code of its event, the code with a number, where
+// that is held by another earthquake: where it is made of the origin time, where it is
+// that of the QuakeML event q, nil for none, and where a QuakeML event gave it to what is
+// held. Authorities number their events alike, and earthquakes share a second.
 func (s *settler) distinguish(ctx context.Context, c *ingest.Channel, q *ingest.CatalogueEvent) error {
-	if q != nil && c.Event == q.Event {
-		return s.distinguishQuake(ctx, c, q)
-	}
-	if c.Event.ID != "" || c.Event.Origin.IsZero() {
-		return nil
-	}
-	first := ingest.EventCode(c)
 	mine := statedOf(c.Event)
-	for n, code := 2, first; ; n++ {
-		other, err := s.ofCode(ctx, code)
-		if err != nil || other == nil {
-			return err
-		}
-		if !contradict(&mine, other) {
-			other.complete(&mine)
-			return nil
-		}
-		code = fmt.Sprintf("%s-%d", first, n)
-		c.Event.ID = code
+	switch {
+	case q != nil:
+		return s.number(ctx, c, func(held *heldEvent) bool { return held.isQuake(q.PublicID, &mine) })
+	case c.Event.ID != "":
+		first := ingest.EventCode(c)
+		return s.number(ctx, c, func(held *heldEvent) bool { return !held.isCodeOfQuake(first) || agree(&held.statedEvent, &mine) })
+	case !c.Event.Origin.IsZero():
+		return s.number(ctx, c, func(held *heldEvent) bool { return !contradict(&held.statedEvent, &mine) })
 	}
+	return nil
 }
 
-func (s *settler) distinguishQuake(ctx context.Context, c *ingest.Channel, q *ingest.CatalogueEvent) error {
+// number gives the channel the first code, its own or that with a number, which no
+// event has or one that is its.
+func (s *settler) number(ctx context.Context, c *ingest.Channel, isIts func(*heldEvent) bool) error {
 	first := ingest.EventCode(c)
-	for n, code := 2, first; ; n++ {
-		held, ok, err := s.tx.FindEvent(ctx, code)
-		if err != nil || !ok {
+	for n := 2; ; n++ {
+		held, err := s.ofCode(ctx, ingest.EventCode(c))
+		if err != nil || held == nil || isIts(held) {
 			return err
 		}
-		quakes, err := s.tx.Quakes(ctx, held.ID)
-		if err != nil {
-			return err
-		}
-		isIt := func(h db.Quake) bool { return h.PublicID == q.PublicID }
-		gaveCode := func(h db.Quake) bool { return h.Came && h.Code == first }
-		if slices.ContainsFunc(quakes, isIt) || !slices.ContainsFunc(quakes, gaveCode) {
-			return nil
-		}
-		code = fmt.Sprintf("%s-%d", first, n)
-		c.Event.ID = code
+		c.Event.ID = fmt.Sprintf("%s-%d", first, n)
 	}
 }
 
-// ofCode returns the event of this code by what headers state of it, nil where there is
-// none. It is read once a batch.
-func (s *settler) ofCode(ctx context.Context, code string) (*statedEvent, error) {
-	if e := s.codes[code]; e != nil {
-		return e, nil
+// heldEvent is an event by what catalogue and headers state of it or, where they state
+// no time, by the QuakeML event that it is.
+type heldEvent struct {
+	statedEvent
+	came []db.Quake // the QuakeML events it may be, where neither catalogue nor headers state a time
+}
+
+// isQuake reports whether the event is that QuakeML event, of which mine is stated.
+func (e *heldEvent) isQuake(publicID string, mine *statedEvent) bool {
+	if len(e.came) > 0 {
+		return slices.ContainsFunc(e.came, func(q db.Quake) bool { return q.PublicID == publicID })
 	}
-	held, ok, err := s.tx.FindEvent(ctx, code)
+	return agree(&e.statedEvent, mine)
+}
+
+// isCodeOfQuake reports whether the event has its code, which was this one before it got
+// a number, of a QuakeML event alone.
+func (e *heldEvent) isCodeOfQuake(first string) bool {
+	return len(e.identifiers) == 0 && slices.ContainsFunc(e.came, func(q db.Quake) bool { return q.Code == first })
+}
+
+// agree reports whether two events of one code are the same: by time, place and
+// magnitude, or by the latter as far as both are stated where one has no time.
+func agree(a, b *statedEvent) bool {
+	if a.Origin.IsZero() || b.Origin.IsZero() {
+		return !contradict(a, b)
+	}
+	_, same := difference(a, b)
+	return same
+}
+
+// ofCode returns the event of this code, nil where there is none. What is stated of it
+// is read once until more is.
+func (s *settler) ofCode(ctx context.Context, code string) (*heldEvent, error) {
+	key, ok, err := s.tx.FindEvent(ctx, code)
 	if err != nil || !ok {
 		return nil, err
 	}
-	own, err := s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: held.ID})
+	if e := s.held[key.ID]; e != nil {
+		return e, nil
+	}
+	own, err := s.tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: key.ID})
 	if err != nil {
 		return nil, err
 	}
-	e := stated(held, slices.DeleteFunc(own, func(st db.Statement) bool { return st.By != db.ByHeader }))
-	s.codes[code] = &e
-	return &e, nil
+	e := &heldEvent{statedEvent: stated(key, withoutMetadata(own))}
+	if e.Origin.IsZero() {
+		if e.came, err = s.tx.Quakes(ctx, key.ID); err != nil {
+			return nil, err
+		}
+		if q := chosen(e.came, &e.statedEvent); q != nil {
+			e.Origin = q.Origin
+			e.complete(&q.Event)
+		}
+	}
+	s.held[key.ID] = e
+	return e, nil
 }
 
-// complete takes the place and the magnitude of another that is the same where e has
-// none.
-func (e *statedEvent) complete(other *statedEvent) {
+// complete takes the place and the magnitude of q where e has none.
+func (e *statedEvent) complete(q *db.Event) {
 	if e.LatitudeDeg == nil {
-		e.LatitudeDeg, e.LongitudeDeg = other.LatitudeDeg, other.LongitudeDeg
+		e.LatitudeDeg, e.LongitudeDeg = q.LatitudeDeg, q.LongitudeDeg
 	}
 	if e.Magnitude == nil {
-		e.Magnitude = other.Magnitude
+		e.Magnitude = q.Magnitude
 	}
 }
 
@@ -170,6 +196,7 @@ func (s *settler) move(ctx context.Context, held *db.Record, to db.RecordKey) er
 				return err
 			}
 			s.seen[m.to] = true
+			delete(s.held, m.to)
 		}
 		if err := s.tx.CopyStatements(ctx, db.Subject{Kind: m.kind, ID: m.from}, subject); err != nil {
 			return err

@@ -114,7 +114,7 @@ func settled(t *testing.T, accounts []inventedAccount, batch int) (*db.Store, []
 			g, err := settleGeneration(t.Context(), tx, testGrid)
 			s := newSettler(tx, known, nil)
 			for _, a := range part {
-				err = errors.Join(err, a.put(t.Context(), tx, s, g))
+				err = errors.Join(err, s.distinguish(t.Context(), &a.account.channel, nil), a.put(t.Context(), tx, s, g))
 			}
 			return errors.Join(err, s.settle(t.Context()))
 		})
@@ -138,20 +138,25 @@ func (a inventedAccount) put(ctx context.Context, tx *db.Tx, s *settler, g db.Ge
 	if err != nil || a.account.by != db.ByHeader {
 		return errors.Join(err, s.state(ctx, key, []account{a.account}))
 	}
+	return errors.Join(addComponent(ctx, tx, key, a.account.source, g), s.state(ctx, key, []account{a.account}))
+}
+
+// addComponent gives the record a component, of a file of its own.
+func addComponent(ctx context.Context, tx *db.Tx, key db.RecordKey, path string, g db.Generation) error {
 	run, err := tx.StartRun(ctx, "ingest", "test", quakeTime)
 	if err != nil {
 		return err
 	}
-	source, err := tx.AddSource(ctx, db.Source{Path: a.account.source, SHA256: a.account.source, Format: "invented"}, run)
+	source, err := tx.AddSource(ctx, db.Source{Path: path, SHA256: path, Format: "invented"}, run)
 	if err != nil {
 		return err
 	}
 	sum := fnv.New32a()
-	sum.Write([]byte(a.account.source))
+	sum.Write([]byte(path))
 	data, digest := db.EncodeSamples([]float64{0, float64(sum.Sum32())}, 1) // no two alike
 	spectra := db.NewSpectra([][]float64{{1, 1, 1}, {1, 1, 1}}, nil)
 	c := db.Component{Role: db.RoleH1, Axis: "horizontal", StepS: 0.01, Samples: 2, SourceID: source}
-	return errors.Join(tx.AddComponent(ctx, key.ID, c, data, digest, g.ID, spectra), s.state(ctx, key, []account{a.account}))
+	return tx.AddComponent(ctx, key.ID, c, data, digest, g.ID, spectra)
 }
 
 func show(x *float64) string {
@@ -314,6 +319,28 @@ func TestEqualTimesOfTwoEarthquakes(t *testing.T) {
 	want := "[20410303T231200-2_QVA002 4 20410303T231200_QVA001 7.2 20410303T231200_QVA003 7.2]"
 	if fmt.Sprint(got) != want {
 		t.Errorf("got  %v\nwant %s", got, want)
+	}
+}
+
+// What the catalogue states of an event after a file of it was read tells the next one
+// apart, in one batch or several.
+func TestEqualTimesAcrossBatches(t *testing.T) {
+	at := func(lat float64) ingest.Event {
+		return ingest.Event{Origin: quakeTime, Latitude: ingest.Known(lat), Longitude: ingest.Known(14)}
+	}
+	alone := header("R1", "a", ingest.Event{Origin: quakeTime}, ingest.Station{})
+	described := inventedAccount{"R1", catalogueAccount(ingest.Channel{Event: at(41)})}
+	accounts := []inventedAccount{alone, header("R2", "b", ingest.Event{Origin: quakeTime}, ingest.Station{}), described,
+		header("R3", "c", at(-20), ingest.Station{}), header("R4", "d", at(41.1), ingest.Station{})}
+	for _, batch := range []int{1, len(accounts)} {
+		_, got := settled(t, accounts, batch)
+		var codes []string
+		for _, line := range got {
+			codes = append(codes, strings.Join(strings.Fields(line)[:2], " "))
+		}
+		if want := "[R1 20260312T101530 R2 20260312T101530 R3 20260312T101530-2 R4 20260312T101530]"; fmt.Sprint(codes) != want {
+			t.Errorf("%d a batch:\ngot  %v\nwant %s", batch, codes, want)
+		}
 	}
 }
 

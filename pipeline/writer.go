@@ -134,7 +134,7 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 		}
 	}
 	for _, s := range res.channels {
-		if err := w.settler.distinguish(ctx, &s.channel, s.quake()); err != nil {
+		if err := w.settler.distinguish(ctx, &s.channel, s.quake); err != nil {
 			return report, err
 		}
 		if s.channel.Event.ID != "" {
