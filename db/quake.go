@@ -54,6 +54,16 @@ func (t *Tx) Quakes(ctx context.Context, eventID int64) ([]Quake, error) {
 	return out, nil
 }
 
+// IsTimed reports whether anybody says when the record's earthquake was.
+func (t *Tx) IsTimed(ctx context.Context, recordID int64) (timed bool, err error) {
+	err = t.tx.QueryRowContext(ctx, `SELECT count(*) > 0 FROM record r JOIN event e ON e.id = r.event_id
+		WHERE r.id = ? AND e.origin_time IS NOT NULL`, recordID).Scan(&timed)
+	if err != nil {
+		return false, fmt.Errorf("read the event of a record: %w", err)
+	}
+	return timed, nil
+}
+
 // CopyQuakes gives an event the QuakeML events that may be another one.
 func (t *Tx) CopyQuakes(ctx context.Context, from, to int64) error {
 	err := t.exec(ctx, `INSERT INTO quake SELECT ?, public_id, code, came, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude,

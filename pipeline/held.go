@@ -4,7 +4,6 @@ import (
 	"context"
 	"fmt"
 	"math"
-	"slices"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -23,7 +22,7 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 	}
 	for _, held := range components {
 		c := channelOf(held)
-		if err := w.describeByMetadata(ctx, tx, held, c, report); err != nil {
+		if err := w.describeByMetadata(ctx, tx, held, c, res.source.Path); err != nil {
 			return err
 		}
 		if w.opts.Catalogue == nil {
@@ -43,7 +42,7 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 
 // describeByMetadata stores what metadata state of a held component, which is c. What
 // they have stated of its earthquake before is no reason to take it for known.
-func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.HeldComponent, c ingest.Channel, report *FileReport) error {
+func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.HeldComponent, c ingest.Channel, path string) error {
 	key := db.RecordKey{ID: held.RecordID, EventID: held.Record.EventID, StationID: held.Record.StationID}
 	own, err := tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: key.EventID})
 	if err != nil {
@@ -51,9 +50,7 @@ func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.Held
 	}
 	c.Event.Origin = asStated(own).Origin
 	accounts, doubt := metadataAccounts(w.opts.Hints.Metadata, &c, held.Samples)
-	if !slices.ContainsFunc(own, func(st db.Statement) bool { return st.By == db.ByMetadata }) {
-		report.doubt(doubt)
-	}
+	w.doubt(path, doubt, held.RecordID)
 	return w.settler.state(ctx, key, accounts)
 }
 

@@ -152,7 +152,7 @@ func TestTwoQuakesAtOneTimeAreSaid(t *testing.T) {
 	for range 2 {
 		var got []string
 		opts := options(dir)
-		opts.Progress = func(p Progress) { got = append(got, p.File.Doubts...) }
+		opts.Doubted = func(d Doubt) { got = append(got, d.Text) }
 		run(t, store, opts)
 		if fmt.Sprint(got) != want {
 			t.Errorf("got  %v\nwant %s", got, want)

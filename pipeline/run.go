@@ -47,6 +47,10 @@ type Options struct {
 	// Rotated is called by the writer after each record of the second stage, in
 	// the order in which they were stored; may be nil.
 	Rotated func(Rotated)
+	// Doubted is called at the end of the run, in the order of the files, for what
+	// metadata leave open of records of which nobody else says when their earthquake was;
+	// may be nil.
+	Doubted func(Doubt)
 }
 
 // Progress is one file done, or one member of an archive.
@@ -93,6 +97,9 @@ func withDefaults(opts Options) Options {
 	}
 	if opts.Rotated == nil {
 		opts.Rotated = func(Rotated) {}
+	}
+	if opts.Doubted == nil {
+		opts.Doubted = func(Doubt) {}
 	}
 	return opts
 }

@@ -1,7 +1,5 @@
 package pipeline
 
-import "slices"
-
 // Cause is why a file, or one channel of it, was rejected.
 type Cause struct {
 	Line int    `json:"line"` // 0 where the cause is not in one line
@@ -17,14 +15,12 @@ type FileReport struct {
 	Records    int    // new with them
 	Causes     []Cause
 	Warnings   []string
-	Doubts     []string // why metadata do not tell its earthquake
 }
 
-// doubt keeps a doubt once, "" for none.
-func (f *FileReport) doubt(text string) {
-	if text != "" && !slices.Contains(f.Doubts, text) {
-		f.Doubts = append(f.Doubts, text)
-	}
+// Doubt says why metadata do not tell the earthquake of what a file holds.
+type Doubt struct {
+	Path string
+	Text string
 }
 
 // Summary counts what became of the files of a run, and of the records whose

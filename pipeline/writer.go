@@ -21,6 +21,7 @@ type writer struct {
 	summary Summary
 	settler *settler                // of the batch in hand
 	known   map[db.Statement]string // what settlers know to be stated
+	doubts  []recordDoubt           // kept to the end: another file may state what one does not
 }
 
 func newWriter(store Store, run state, opts Options, src *source) *writer {
@@ -38,7 +39,7 @@ func (w *writer) files(ctx context.Context) error {
 // storeBatch stores the results in one transaction and reports them once it is
 // committed.
 func (w *writer) storeBatch(ctx context.Context, batch []result) error {
-	reports := make([]FileReport, 0, len(batch))
+	reports, doubts := make([]FileReport, 0, len(batch)), len(w.doubts)
 	err := w.store.Update(ctx, func(tx *db.Tx) error {
 		w.settler = newSettler(tx, w.known, w.opts.Hints.Metadata.Events())
 		for _, res := range batch {
@@ -57,6 +58,7 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 		return w.settler.settle(ctx)
 	})
 	if err != nil {
+		w.doubts = w.doubts[:doubts]
 		return err
 	}
 	for _, report := range reports {
@@ -152,7 +154,7 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 				return report, err
 			}
 		}
-		if err := w.storeChannel(ctx, tx, s, p, sourceID); err != nil {
+		if err := w.storeChannel(ctx, tx, res.source.Path, s, p, sourceID); err != nil {
 			return report, err
 		}
 		report.Components++
@@ -160,7 +162,6 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 			report.Records++
 		}
 		report.Warnings = append(report.Warnings, s.channel.Warnings...)
-		report.doubt(s.doubt)
 	}
 	if report.Components == 0 {
 		report.Outcome = Rejected
@@ -168,7 +169,7 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 	return report, nil
 }
 
-func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, s solved, p placement, sourceID int64) error {
+func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, path string, s solved, p placement, sourceID int64) error {
 	record, err := tx.PutRecord(ctx, recordOf(s.channel, p.code), false)
 	if err == nil && s.matched {
 		record, err = tx.PutRecord(ctx, recordOf(s.stated, p.code), true)
@@ -179,6 +180,7 @@ func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, s solved, p placem
 	if err := w.settler.state(ctx, record, s.accounts); err != nil {
 		return err
 	}
+	w.doubt(path, s.doubt, record.ID)
 	if err := tx.SetRoles(ctx, record.ID, p.renamed); err != nil {
 		return err
 	}
@@ -199,6 +201,36 @@ func (w *writer) reject(ctx context.Context, tx *db.Tx, res result, report FileR
 	return report, tx.Reject(ctx, r, w.run.id)
 }
 
+// recordDoubt is a doubt of a record.
+type recordDoubt struct {
+	Doubt
+	recordID int64
+}
+
+// doubt keeps what is doubtful of a record, "" for nothing. The channels of a file mostly
+// say one thing.
+func (w *writer) doubt(path, text string, recordID int64) {
+	d := recordDoubt{Doubt{path, text}, recordID}
+	if text != "" && (len(w.doubts) == 0 || w.doubts[len(w.doubts)-1] != d) {
+		w.doubts = append(w.doubts, d)
+	}
+}
+
+// standing returns the doubts of records of which nobody says when their earthquake was.
+func (w *writer) standing(ctx context.Context, tx *db.Tx) ([]Doubt, error) {
+	var out []Doubt
+	for _, d := range w.doubts {
+		timed, err := tx.IsTimed(ctx, d.recordID)
+		if err != nil {
+			return nil, err
+		}
+		if !timed && (len(out) == 0 || out[len(out)-1] != d.Doubt) {
+			out = append(out, d.Doubt)
+		}
+	}
+	return out, nil
+}
+
 // finish closes the run's entry. The summary counts what was committed.
 func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 	w.summary.Seconds = w.opts.Clock().Sub(w.opts.Started).Seconds()
@@ -210,11 +242,18 @@ func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 		outcome = "failed"
 	}
 	ctx = context.WithoutCancel(ctx)
+	var standing []Doubt
 	errFinish := w.store.Update(ctx, func(tx *db.Tx) (err error) {
 		if w.summary.EventsJoined, w.summary.Duplicates, err = tx.Relations(ctx); err != nil {
 			return err
 		}
+		if standing, err = w.standing(ctx, tx); err != nil {
+			return err
+		}
 		return tx.FinishRun(ctx, w.run.id, outcome, w.summary, w.opts.Clock())
 	})
+	for _, d := range standing {
+		w.opts.Doubted(d)
+	}
 	return w.summary, errors.Join(err, errFinish)
 }

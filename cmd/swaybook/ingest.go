@@ -106,7 +106,7 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 
 func pipelineOptions(store string, m *monitor) pipeline.Options {
 	return pipeline.Options{
-		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Rotated: m.record,
+		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Rotated: m.record, Doubted: m.doubt,
 		Own: map[string]string{store: "the store itself", store + "-wal": "the store's log", store + "-shm": "the store's log"},
 	}
 }

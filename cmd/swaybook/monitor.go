@@ -122,6 +122,9 @@ func (m *monitor) show(doing, things string, done, total int) {
 	}
 }
 
+// doubt takes note of what metadata leave open.
+func (m *monitor) doubt(d pipeline.Doubt) { m.doubts.add(fileNote{Source: d.Path, Cause: d.Text}) }
+
 func (m *monitor) note(f pipeline.FileReport) {
 	if f.Outcome == pipeline.Skipped {
 		m.skipped.add(fileNote{Source: f.Path, Cause: f.Reason})
@@ -129,9 +132,6 @@ func (m *monitor) note(f pipeline.FileReport) {
 	for _, c := range f.Causes {
 		m.rejected.add(fileNote{Source: f.Path, Line: c.Line, Cause: c.Text})
 		m.causes[general(c.Text)]++
-	}
-	for _, text := range f.Doubts {
-		m.doubts.add(fileNote{Source: f.Path, Cause: text})
 	}
 	for _, text := range f.Warnings {
 		m.warnings.add(text, f.Path, "")
