@@ -3,24 +3,28 @@ package db
 import (
 	"context"
 	"fmt"
+	"time"
 )
 
 // Quake is an event of a QuakeML document that may be an event of the store.
 type Quake struct {
 	PublicID string
-	Came     bool // its waves reached a station while a record of the event ran
-	Event         // Code is that which it gives
+	Came     bool      // its waves reached a station while a record of the event ran
+	Created  time.Time // when this version of it came about, zero where nobody says
+	Event              // Code is that which it gives
 }
 
-// PutQuake stores that q may be the event, as it is stated now. What came stays so.
+// PutQuake stores that q may be the event, in place of another version of it. The code
+// stays that of the first: the event may be named after it, which is how it is known as
+// the one that gave the code.
 func (t *Tx) PutQuake(ctx context.Context, eventID int64, q Quake) error {
 	err := t.exec(ctx, `INSERT INTO quake
-			(event_id, public_id, code, came, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude, magnitude_type)
-		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?) ON CONFLICT DO UPDATE SET came = max(came, excluded.came), name = excluded.name,
+			(event_id, public_id, code, came, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude, magnitude_type, created_at)
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?) ON CONFLICT DO UPDATE SET came = excluded.came, name = excluded.name,
 			origin_time = excluded.origin_time, latitude_deg = excluded.latitude_deg, longitude_deg = excluded.longitude_deg,
-			depth_km = excluded.depth_km, magnitude = excluded.magnitude, magnitude_type = excluded.magnitude_type`,
+			depth_km = excluded.depth_km, magnitude = excluded.magnitude, magnitude_type = excluded.magnitude_type, created_at = excluded.created_at`,
 		eventID, q.PublicID, q.Code, q.Came, textOrNull(q.Name), timeText(q.Origin), q.LatitudeDeg, q.LongitudeDeg, q.DepthKM, q.Magnitude,
-		textOrNull(q.MagnitudeType))
+		textOrNull(q.MagnitudeType), timeText(q.Created))
 	if err != nil {
 		return fmt.Errorf("store QuakeML event %s: %w", q.PublicID, err)
 	}
@@ -30,16 +34,16 @@ func (t *Tx) PutQuake(ctx context.Context, eventID int64, q Quake) error {
 // Quakes returns the QuakeML events that may be the event, by public identifier.
 func (t *Tx) Quakes(ctx context.Context, eventID int64) ([]Quake, error) {
 	rows, err := t.tx.QueryContext(ctx, `SELECT public_id, code, came, coalesce(name, ''), origin_time, latitude_deg, longitude_deg, depth_km,
-		magnitude, coalesce(magnitude_type, '') FROM quake WHERE event_id = ? ORDER BY public_id`, eventID)
+		magnitude, coalesce(magnitude_type, ''), coalesce(created_at, '') FROM quake WHERE event_id = ? ORDER BY public_id`, eventID)
 	if err != nil {
 		return nil, fmt.Errorf("read QuakeML events: %w", err)
 	}
 	type row struct {
 		Quake
-		origin string
+		origin, created string
 	}
 	found, err := collect(rows, func(q *row) []any {
-		return []any{&q.PublicID, &q.Code, &q.Came, &q.Name, &q.origin, &q.LatitudeDeg, &q.LongitudeDeg, &q.DepthKM, &q.Magnitude, &q.MagnitudeType}
+		return []any{&q.PublicID, &q.Code, &q.Came, &q.Name, &q.origin, &q.LatitudeDeg, &q.LongitudeDeg, &q.DepthKM, &q.Magnitude, &q.MagnitudeType, &q.created}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read QuakeML events: %w", err)
@@ -49,9 +53,20 @@ func (t *Tx) Quakes(ctx context.Context, eventID int64) ([]Quake, error) {
 		if q.Origin, err = parseTime(q.origin); err != nil {
 			return nil, err
 		}
+		if q.Created, err = parseTime(q.created); err != nil {
+			return nil, err
+		}
 		out[i] = q.Quake
 	}
 	return out, nil
+}
+
+// ForgetQuake removes a QuakeML event from those that may be the event.
+func (t *Tx) ForgetQuake(ctx context.Context, eventID int64, publicID string) error {
+	if err := t.exec(ctx, `DELETE FROM quake WHERE event_id = ? AND public_id = ?`, eventID, publicID); err != nil {
+		return fmt.Errorf("forget QuakeML event %s: %w", publicID, err)
+	}
+	return nil
 }
 
 // IsTimed reports whether anybody says when the record's earthquake was.
@@ -67,7 +82,7 @@ func (t *Tx) IsTimed(ctx context.Context, recordID int64) (timed bool, err error
 // CopyQuakes gives an event the QuakeML events that may be another one.
 func (t *Tx) CopyQuakes(ctx context.Context, from, to int64) error {
 	err := t.exec(ctx, `INSERT INTO quake SELECT ?, public_id, code, came, name, origin_time, latitude_deg, longitude_deg, depth_km, magnitude,
-		magnitude_type FROM quake WHERE event_id = ? ON CONFLICT DO NOTHING`, to, from)
+		magnitude_type, created_at FROM quake WHERE event_id = ? ON CONFLICT DO NOTHING`, to, from)
 	if err != nil {
 		return fmt.Errorf("copy QuakeML events: %w", err)
 	}

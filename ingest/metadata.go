@@ -21,11 +21,11 @@ import (
 // that add excepted.
 type Metadata struct {
 	inventory fdsnxml.Inventory
-	known     map[string]bool // public identifiers of events
 	notes     []MetadataNote
 
 	ordering sync.Mutex // guards what follows
 	events   []CatalogueEvent
+	known    map[string]int // their positions by public identifier
 	ordered  bool
 }
 
@@ -43,6 +43,8 @@ type CatalogueEvent struct {
 	// PublicID is the document's own identifier, unique in the world, or made of time
 	// and place where it states none.
 	PublicID string
+	// Created is when this version of it came about, zero where the document does not say.
+	Created time.Time
 }
 
 // The reasons for which a file is no record but was put to use.
@@ -155,29 +157,40 @@ func (m *Metadata) Notes() []MetadataNote {
 	return m.notes
 }
 
-// addEvents keeps the events of a document. Of an event that is there already the
-// first stays.
+// addEvents keeps the events of a document. Of an event that is there already the later
+// version stays.
 func (m *Metadata) addEvents(path string, events []fdsnxml.Event) {
-	if m.known == nil {
-		m.known = map[string]bool{}
-	}
 	m.ordering.Lock()
 	defer m.ordering.Unlock()
+	if m.known == nil {
+		m.known = map[string]int{}
+	}
 	for i := range events {
 		e, doubts := catalogueEvent(&events[i])
 		for _, d := range doubts {
 			m.notes = append(m.notes, MetadataNote{path, events[i].Line, fmt.Sprintf("event %.80s: %s", e.PublicID, d)})
 		}
-		if !m.known[e.PublicID] {
-			m.known[e.PublicID] = true
-			m.events, m.ordered = append(m.events, e), false
+		at, ok := m.known[e.PublicID]
+		switch {
+		case !ok:
+			m.known[e.PublicID] = len(m.events)
+			m.events = append(m.events, e)
+		case !m.events[at].Supersedes(&e):
+			m.events[at] = e
 		}
+		m.ordered = false
 	}
+}
+
+// Supersedes reports whether e is a later version than another of the same event that
+// was read after it: where both say when they came about. Else the last read is taken.
+func (e *CatalogueEvent) Supersedes(next *CatalogueEvent) bool {
+	return !next.Created.IsZero() && e.Created.After(next.Created)
 }
 
 // IsEmpty reports whether no document has been read.
 func (m *Metadata) IsEmpty() bool {
-	return m == nil || len(m.known)+len(m.inventory.Stations)+len(m.inventory.Channels) == 0
+	return m == nil || len(m.Events())+len(m.inventory.Stations)+len(m.inventory.Channels) == 0
 }
 
 // Events returns the events in the order of their origin times. The caller must
@@ -188,19 +201,42 @@ func (m *Metadata) Events() []CatalogueEvent {
 	}
 	m.ordering.Lock()
 	defer m.ordering.Unlock()
+	m.order()
+	return m.events
+}
+
+// Event returns the event with this public identifier.
+func (m *Metadata) Event(publicID string) (e CatalogueEvent, ok bool) {
+	if m == nil {
+		return e, false
+	}
+	m.ordering.Lock()
+	defer m.ordering.Unlock()
+	m.order()
+	at, ok := m.known[publicID]
+	if ok {
+		e = m.events[at]
+	}
+	return e, ok
+}
+
+// order sorts the events by origin time, with the lock held.
+func (m *Metadata) order() {
 	if !m.ordered {
 		slices.SortFunc(m.events, func(a, b CatalogueEvent) int {
 			return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
 		})
+		for i := range m.events {
+			m.known[m.events[i].PublicID] = i
+		}
 		m.ordered = true
 	}
-	return m.events
 }
 
 // catalogueEvent returns the event as it is used, and what is doubtful of it: it is
 // held to the limits that headers are.
 func catalogueEvent(e *fdsnxml.Event) (out CatalogueEvent, doubts []string) {
-	out.PublicID = orElse(e.PublicID, placeID(e))
+	out.PublicID, out.Created = orElse(e.PublicID, placeID(e)), e.Created
 	c := Channel{Event: Event{
 		ID: orElse(e.Code, lastOfID(out.PublicID)), Name: e.Name, Origin: e.Origin,
 		Latitude: Known(e.Latitude), Longitude: Known(e.Longitude), MagnitudeType: e.MagnitudeType, Magnitude: Number(e.Magnitude),

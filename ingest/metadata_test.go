@@ -163,7 +163,7 @@ func TestEventsWithoutIdentifier(t *testing.T) {
 }
 
 // Events come in the order of their times, however they are spread over documents,
-// and of two with one identifier the first stays.
+// and of two with one identifier the last read stays, or the later one by what both say.
 func TestEventsAreInOrder(t *testing.T) {
 	var m Metadata
 	for document, minutes := range [][]int{{5, 1}, {}, {3, 9, 1, 0}, {7}, {2, 4}} {
@@ -178,8 +178,17 @@ func TestEventsAreInOrder(t *testing.T) {
 	for _, e := range m.Events() {
 		got = append(got, e.ID+"/"+e.Name)
 	}
-	if want := "0/2 1/0 2/4 3/2 4/4 5/0 7/3 9/2"; strings.Join(got, " ") != want {
+	if want := "0/2 1/2 2/4 3/2 4/4 5/0 7/3 9/2"; strings.Join(got, " ") != want {
 		t.Errorf("events %v, want %s", got, want)
+	}
+	for i, days := range []int{2, 3, 1} { // when the versions came about
+		m.addEvents("doc.xml", []fdsnxml.Event{{PublicID: "smi:invented/3", Origin: mseedStart, Created: mseedStart.AddDate(0, 0, days), Name: fmt.Sprint(i)}})
+	}
+	if e, ok := m.Event("smi:invented/3"); !ok || e.Name != "1" || !e.Origin.Equal(mseedStart) {
+		t.Errorf("of three versions %+v, want the second", e)
+	}
+	if _, ok := m.Event("smi:invented/8"); ok || len(m.Events()) != 8 {
+		t.Errorf("%d events", len(m.Events()))
 	}
 }
 

@@ -58,6 +58,7 @@ CREATE INDEX component_motion ON component (motion_id) WHERE motion_id IS NOT NU
 -- The QuakeML events that may be an event, of which the nearest to what catalogue and
 -- headers state of it makes the statements of metadata. came is 1 where its waves
 -- reached a station while a record of the event ran; code is that which it gives.
+-- created_at is when this version of it came about, NULL where nobody says.
 CREATE TABLE quake (
     event_id       INTEGER NOT NULL REFERENCES event (id),
     public_id      TEXT NOT NULL,
@@ -70,5 +71,6 @@ CREATE TABLE quake (
     depth_km       REAL,
     magnitude      REAL,
     magnitude_type TEXT,
+    created_at     TEXT,
     PRIMARY KEY (event_id, public_id)
 ) STRICT, WITHOUT ROWID;

@@ -85,13 +85,42 @@ func withoutMetadata(own []db.Statement) []db.Statement {
 	return slices.DeleteFunc(slices.Clone(own), func(st db.Statement) bool { return st.By == db.ByMetadata })
 }
 
+// putQuake stores that q may be the event, or what is the later version of it.
+func (s *settler) putQuake(ctx context.Context, eventID int64, q db.Quake) error {
+	held, err := s.tx.Quakes(ctx, eventID)
+	if err != nil {
+		return err
+	}
+	for _, h := range held {
+		if h.PublicID == q.PublicID {
+			q, _ = laterVersion(h, q)
+		}
+	}
+	delete(s.held, eventID)
+	return s.tx.PutQuake(ctx, eventID, q)
+}
+
+// laterVersion returns the later one of two versions of a QuakeML event, q the one read
+// last, and whether they lie too far apart to be one solution with some change. If they
+// do not, the waves of one came as those of the other did.
+func laterVersion(held, q db.Quake) (later db.Quake, moved bool) {
+	later, earlier := q, held
+	if !q.Created.IsZero() && held.Created.After(q.Created) {
+		later, earlier = held, q
+	}
+	_, same := difference(&statedEvent{Event: held.Event}, &statedEvent{Event: q.Event})
+	later.Code = held.Code
+	later.Came = later.Came || earlier.Came && same
+	return later, !same
+}
+
 // quake settles which QuakeML event an event of the store is, and states what that
 // one says. The documents at hand are looked through for those that may be it; what may
 // be it is kept, so that it does not matter which document comes first, or in another
 // run.
 func (s *settler) quake(ctx context.Context, id int64) error {
 	held, err := s.tx.Quakes(ctx, id)
-	if err != nil || len(held) == 0 && len(s.quakes) == 0 {
+	if err != nil || len(held) == 0 && len(s.metadata.Events()) == 0 {
 		return err
 	}
 	subject := db.Subject{Kind: db.SubjectEvent, ID: id}
@@ -100,27 +129,55 @@ func (s *settler) quake(ctx context.Context, id int64) error {
 		return err
 	}
 	as := statedEvent{Event: asStated(own)}
-	for _, e := range around(s.quakes, as.Origin, minuteTolerance, minuteTolerance) {
-		other := statedOf(e.Event)
-		if _, same := difference(&as, &other); same {
-			q := quakeOf(e)
-			if err := s.tx.PutQuake(ctx, id, q); err != nil {
-				return err
-			}
-			held = append(slices.DeleteFunc(held, func(h db.Quake) bool { return h.PublicID == q.PublicID }), q)
-		}
-	}
-	key, err := s.tx.EventKey(ctx, id)
-	if err != nil {
+	if held, err = s.renewQuakes(ctx, id, held, &as); err != nil {
 		return err
 	}
-	as.EventKey = key
+	for _, e := range around(s.metadata.Events(), as.Origin, minuteTolerance, minuteTolerance) {
+		q := quakeOf(e)
+		_, same := difference(&as, &statedEvent{Event: q.Event})
+		if !same || slices.ContainsFunc(held, func(h db.Quake) bool { return h.PublicID == q.PublicID }) {
+			continue
+		}
+		if err := s.tx.PutQuake(ctx, id, q); err != nil {
+			return err
+		}
+		held = append(held, q)
+	}
+	if as.EventKey, err = s.tx.EventKey(ctx, id); err != nil {
+		return err
+	}
 	return s.stateQuake(ctx, subject, own, chosen(held, &as))
+}
+
+// renewQuakes brings what may be the event up to the versions of the documents at hand,
+// and forgets what moved away from it.
+func (s *settler) renewQuakes(ctx context.Context, id int64, held []db.Quake, as *statedEvent) ([]db.Quake, error) {
+	var out []db.Quake
+	for _, h := range held {
+		e, ok := s.metadata.Event(h.PublicID)
+		if !ok {
+			out = append(out, h)
+			continue
+		}
+		q, moved := laterVersion(h, quakeOf(e))
+		_, fits := difference(as, &statedEvent{Event: q.Event})
+		if moved && !fits && !q.Came {
+			if err := s.tx.ForgetQuake(ctx, id, q.PublicID); err != nil {
+				return nil, err
+			}
+			continue
+		}
+		if err := s.tx.PutQuake(ctx, id, q); err != nil {
+			return nil, err
+		}
+		out = append(out, q)
+	}
+	return out, nil
 }
 
 // quakeOf is a QuakeML event, which always has a time, as it is stored.
 func quakeOf(e ingest.CatalogueEvent) db.Quake {
-	return db.Quake{PublicID: e.PublicID, Event: *eventOf(&ingest.Channel{Event: e.Event})}
+	return db.Quake{PublicID: e.PublicID, Created: e.Created, Event: *eventOf(&ingest.Channel{Event: e.Event})}
 }
 
 // chosen returns the QuakeML event that an event of the store is: the nearest to what

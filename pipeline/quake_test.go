@@ -244,7 +244,7 @@ func TestEqualCodesOfQuakeMLAndOthers(t *testing.T) {
 			for part := range slices.Chunk(order, batch) {
 				err := store.Update(t.Context(), func(tx *db.Tx) error {
 					g, err := settleGeneration(t.Context(), tx, testGrid)
-					s := newSettler(tx, map[db.Statement]string{}, []ingest.CatalogueEvent{quake})
+					s := newSettler(tx, map[db.Statement]string{}, nil)
 					for _, by := range part {
 						err = errors.Join(err, putOf(t.Context(), tx, s, g, at, by, events[test.where], &quake))
 						at++
@@ -286,4 +286,105 @@ func putOf(ctx context.Context, tx *db.Tx, s *settler, g db.Generation, n int, b
 		return err
 	}
 	return errors.Join(addComponent(ctx, tx, key, fmt.Sprint(n), g), s.state(ctx, key, []account{said}))
+}
+
+// Of two versions of one QuakeML event the later counts, by what they say of when they
+// came about, else by the order of reading, in one run or in two; what moved away is no
+// more of the event.
+func TestVersionsOfOneQuakeML(t *testing.T) {
+	version := func(created, origin string, lat, magnitude float64) string {
+		text := quakeML("smi:example.org/moor", "Moor", origin, lat, 142, magnitude)
+		if created != "" {
+			text = strings.Replace(text, "</event>", "<creationInfo><creationTime>"+created+"</creationTime></creationInfo></event>", 1)
+		}
+		return text
+	}
+	// Origin times of K-NET are nine hours ahead.
+	const at, later = "2041-03-03T23:12:00.5Z", "2041-03-04T05:00:00Z"
+	early, revised := version("2041-03-04T00:00:00Z", at, 38.01, 7.1), version("2041-03-05T00:00:00Z", at, 38.02, 7.3)
+	moved := version("2041-03-05T00:00:00Z", later, 38.02, 7.3)
+	undated, undatedRevised, undatedMoved := version("", at, 38.01, 7.1), version("", at, 38.02, 7.3), version("", later, 38.02, 7.3)
+	const isEarly, isRevised, none = "Moor 38.01 M7.1, 1 held", "Moor 38.02 M7.3, 1 held", " 38 M7.2, 0 held"
+	for _, test := range []struct {
+		name, first, second string
+		want                string
+	}{
+		{"the later one second", early, revised, isRevised},
+		{"the later one first", revised, early, isRevised},
+		{"undated: the last read", undated, undatedRevised, isRevised},
+		{"undated: the last read, the other way round", undatedRevised, undated, isEarly},
+		{"one undated: the last read", revised, undated, isEarly},
+		{"moved away", early, moved, none},
+		{"moved away, read first", moved, early, none},
+		{"moved away, undated", undated, undatedMoved, none},
+		{"moved to it, undated", undatedMoved, undated, isEarly},
+	} {
+		for _, runs := range []string{"1.xml 2.xml", "1.xml|2.xml", "1.xml|2.xml|2.xml"} {
+			if test.name == "moved away, read first" && runs != "1.xml 2.xml" {
+				continue // of what was never near nothing is known
+			}
+			dir, store := t.TempDir(), newStore(t)
+			put(t, dir, "a.NS", knetOf("QVA001", "38.0", "142.0", "7.2", 1))
+			put(t, dir, "1.xml", test.first)
+			put(t, dir, "2.xml", test.second)
+			for documents := range strings.SplitSeq(runs, "|") {
+				paths := []string{filepath.Join(dir, "a.NS")}
+				for _, name := range strings.Fields(documents) {
+					paths = append(paths, filepath.Join(dir, name))
+				}
+				run(t, store, options(paths...))
+			}
+			e := componentsOf(t, store)[0].Record.Event
+			if got := fmt.Sprintf("%s %v M%v, %d held", e.Name, *e.LatitudeDeg, *e.Magnitude, len(quakesOf(t, store, e.Code))); got != test.want {
+				t.Errorf("%s, %s: %q, want %q", test.name, runs, got, test.want)
+			}
+		}
+	}
+}
+
+// quakesOf are the QuakeML events that may be the event of this code.
+func quakesOf(t *testing.T, store *db.Store, code string) (quakes []db.Quake) {
+	t.Helper()
+	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		key, ok, err := tx.FindEvent(t.Context(), code)
+		if err != nil || !ok {
+			return errors.Join(err, fmt.Errorf("no event %s", code))
+		}
+		quakes, err = tx.Quakes(t.Context(), key.ID)
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return quakes
+}
+
+func TestLaterVersion(t *testing.T) {
+	version := func(created, later float64, came bool) db.Quake {
+		e := listed("smi:a/17", later, 41, 14, 6)
+		if created != 0 {
+			e.Created = quakeTime.Add(seconds(created))
+		}
+		q := quakeOf(e)
+		q.Came = came
+		return q
+	}
+	for _, test := range []struct {
+		name        string
+		held, q     db.Quake
+		origin      float64 // seconds later
+		came, moved bool
+	}{
+		{"revised: what came still did", version(1, 0, true), version(2, 5, false), 5, true, false},
+		{"moved: it came by the earlier version alone", version(1, 0, true), version(2, 9000, false), 9000, false, true},
+		{"moved: it came by the later one", version(1, 0, false), version(2, 9000, true), 9000, true, true},
+		{"an earlier one is read last", version(2, 5, false), version(1, 0, true), 5, true, false},
+		{"an earlier one far away is read last", version(2, 9000, false), version(1, 0, true), 9000, false, true},
+		{"undated is read last", version(2, 5, true), version(0, 0, false), 0, true, false},
+	} {
+		got, moved := laterVersion(test.held, test.q)
+		if later := got.Origin.Sub(quakeTime).Seconds(); later != test.origin || got.Came != test.came || moved != test.moved {
+			t.Errorf("%s: %g s later, came %t, moved %t", test.name, later, got.Came, moved)
+		}
+	}
 }

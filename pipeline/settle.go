@@ -17,7 +17,7 @@ import (
 type settler struct {
 	tx       *db.Tx
 	known    map[db.Statement]string // what was stated before, without its source: the least of those
-	quakes   []ingest.CatalogueEvent // of the documents of this run, by time
+	metadata *ingest.Metadata        // of this run
 	seen     map[int64]bool          // events of which files were seen
 	touched  map[db.Subject]bool
 	settled  map[db.Subject]bool  // together with others
@@ -26,8 +26,8 @@ type settler struct {
 	comparer likeness.Comparer
 }
 
-func newSettler(tx *db.Tx, known map[db.Statement]string, quakes []ingest.CatalogueEvent) *settler {
-	return &settler{tx: tx, known: known, quakes: quakes, seen: map[int64]bool{}, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{},
+func newSettler(tx *db.Tx, known map[db.Statement]string, metadata *ingest.Metadata) *settler {
+	return &settler{tx: tx, known: known, metadata: metadata, seen: map[int64]bool{}, touched: map[db.Subject]bool{}, settled: map[db.Subject]bool{},
 		held: map[int64]*heldEvent{}, read: map[int64]*ownEvent{}}
 }
 
@@ -40,10 +40,9 @@ func (s *settler) state(ctx context.Context, k db.RecordKey, accounts []account)
 		if a.quake != nil && k.EventID != 0 {
 			q := quakeOf(*a.quake)
 			q.Came = true
-			if err := s.tx.PutQuake(ctx, k.EventID, q); err != nil {
+			if err := s.putQuake(ctx, k.EventID, q); err != nil {
 				return err
 			}
-			delete(s.held, k.EventID)
 		}
 		for _, st := range a.statements(k) {
 			if err := s.stateOne(ctx, st); err != nil {

@@ -41,7 +41,7 @@ func (w *writer) files(ctx context.Context) error {
 func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 	reports, doubts := make([]FileReport, 0, len(batch)), len(w.doubts)
 	err := w.store.Update(ctx, func(tx *db.Tx) error {
-		w.settler = newSettler(tx, w.known, w.opts.Hints.Metadata.Events())
+		w.settler = newSettler(tx, w.known, w.opts.Hints.Metadata)
 		for _, res := range batch {
 			if res.outcome == opened {
 				if err := tx.ForgetUnread(ctx, res.source.Path, archive.Join(res.source.Path, "")); err != nil {

@@ -21,6 +21,9 @@ type Event struct {
 	DepthM              Number
 	Magnitude           Number
 	MagnitudeType       string // Mw, ML …
+	// Created is when this version of the event came about, or else its origin; zero
+	// where not stated.
+	Created time.Time
 	// Line is that of the event's start tag.
 	Line int
 	// Warnings say what had to be chosen.
@@ -38,6 +41,7 @@ type (
 		Origin       string         `xml:"preferredOriginID"`
 		Magnitude    string         `xml:"preferredMagnitudeID"`
 		Type         string         `xml:"type"`
+		Created      string         `xml:"creationInfo>creationTime"`
 		Descriptions []xmlWords     `xml:"description"`
 		Origins      []xmlOrigin    `xml:"origin"`
 		Magnitudes   []xmlMagnitude `xml:"magnitude"`
@@ -104,12 +108,24 @@ func (raw *xmlEvent) event(line int) (e Event, err error) {
 	}
 	o, err := raw.origin(&e)
 	if err == nil {
+		e.Created = created(raw.Created, o.Created)
 		err = o.describe(&e)
 	}
 	if err == nil {
 		err = raw.magnitude(&e)
 	}
 	return e, err
+}
+
+// created is the first of the texts that is a time. Nothing else depends on it, so one
+// that is none is no fault of the event.
+func created(texts ...string) time.Time {
+	for _, text := range texts {
+		if at, err := instant(text); err == nil && !at.IsZero() {
+			return at
+		}
+	}
+	return time.Time{}
 }
 
 // name is the description that speaks of the place or the earthquake's name,

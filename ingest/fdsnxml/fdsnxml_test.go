@@ -73,7 +73,7 @@ func TestReadEvents(t *testing.T) {
 		},
 		{
 			PublicID: "smi:example.org/event/second", Origin: day(2041, 3, 4, 22).Add(time.Second), Latitude: -3.1, Longitude: 10.1,
-			Magnitude: known(4.3), MagnitudeType: "Mwr", Line: 22,
+			Magnitude: known(4.3), MagnitudeType: "Mwr", Line: 22, Created: day(2041, 3, 5, 0),
 			Warnings: []string{
 				"of 2 origins none is preferred: the newest taken, manual ones first",
 				"of 2 magnitudes none is preferred: a moment magnitude taken, else the first",
@@ -461,6 +461,28 @@ func checkNotes(t *testing.T, notes []Note, data []byte) {
 	for _, n := range notes {
 		if n.Line < 1 || n.Line > 1+bytes.Count(data, []byte("\n")) || n.Text == "" {
 			t.Fatalf("note %+v", n)
+		}
+	}
+}
+
+// A version dates from what the event says, else from its origin; a text that is no time
+// loses no event.
+func TestCreated(t *testing.T) {
+	const origin = `<origin><time><value>2041-03-04T08:12:00Z</value></time><latitude><value>1</value></latitude><longitude><value>2</value></longitude>%s</origin>`
+	const info = "<creationInfo><creationTime>%s</creationTime></creationInfo>"
+	for _, test := range []struct {
+		event, origin string
+		want          time.Time
+	}{
+		{"2041-03-06T00:00:00Z", "2041-03-05T00:00:00Z", day(2041, 3, 6, 0)},
+		{"soon", "2041-03-05T01:00:00+01:00", day(2041, 3, 5, 0)},
+		{"", "", time.Time{}},
+	} {
+		text := `<quakeml xmlns="http://quakeml.org/xmlns/bed/1.2"><eventParameters><event publicID="a">` +
+			fmt.Sprintf(info, test.event) + fmt.Sprintf(origin, fmt.Sprintf(info, test.origin)) + `</event></eventParameters></quakeml>`
+		events, left, err := ReadEvents(t.Context(), []byte(text))
+		if err != nil || len(left) > 0 || len(events) != 1 || !events[0].Created.Equal(test.want) {
+			t.Errorf("%q, %q: %+v, %v, %v", test.event, test.origin, events, left, err)
 		}
 	}
 }
