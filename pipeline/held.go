@@ -31,6 +31,13 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 		hints := w.opts.Catalogue.Hints(res.rel, ingest.Hints{})
 		stated, matched := w.opts.Catalogue.Apply(res.rel, &c)
 		if matched {
+			// A code that the catalogue gives may be another earthquake's.
+			if e := held.Record.Event; e == nil || e.OwnCode != c.Event.ID {
+				if err := w.settler.distinguish(ctx, &c, nil); err != nil {
+					return err
+				}
+				stated.Event.ID = ingest.EventCode(&c)
+			}
 			if err := w.redescribe(ctx, tx, held, c.Orientation, stated); err != nil {
 				return err
 			}
