@@ -2,8 +2,11 @@ package pipeline
 
 import (
 	"cmp"
+	"context"
+	"errors"
 	"fmt"
 	"math/rand/v2"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -127,27 +130,170 @@ func duplicates(t *testing.T, store *db.Store) string {
 	return strings.Join(out, ", ")
 }
 
+// versionsOf numbers invented components, each of a record, a file and samples of its
+// own unless they are given.
+func versionsOf(of ...db.Version) []*db.Version {
+	all := make([]*db.Version, len(of))
+	for i := range of {
+		v := of[i]
+		v.ComponentID, v.RecordID = int64(i+1), int64(i+1)
+		v.Digest, v.SourceSHA256 = cmp.Or(v.Digest, fmt.Sprint(i)), cmp.Or(v.SourceSHA256, fmt.Sprint(i))
+		all[i] = &v
+	}
+	return all
+}
+
+// sensor is a component of this format and channel in a structure.
+func sensor(format, channel string) db.Version {
+	v := db.Version{Siting: "structure", EventID: 1, StationCode: "AAA"}
+	v.SourceFormat, v.Channel, v.Axis = format, channel, "vertical"
+	return v
+}
+
+// components stores so many that have nothing to do with each other, with
+// the ids from 1 on.
+func components(t *testing.T, n int) *db.Store {
+	t.Helper()
+	dir, table := t.TempDir(), "file,event,station,component\n"
+	for i := range n {
+		put(t, dir, fmt.Sprintf("%02d.csv", i), csvOf(uint64(i), 1, 2))
+		table += fmt.Sprintf("%02d.csv,EV%d,S%d,000\n", i, i, i)
+	}
+	store, opts := newStore(t), options(dir)
+	opts.Catalogue = catalogue(t, table)
+	run(t, store, opts)
+	return store
+}
+
 // What one sensor gave is one motion with what it is most like, not with that of the
-// sensor beside it, which it is like, too.
+// sensor beside it, which it is like, too; and no third one makes one of two sensors.
 func TestSensorsSideBySide(t *testing.T) {
-	version := func(format, file, channel string) *db.Version {
-		v := &db.Version{Siting: "structure"}
-		v.SourceFormat, v.SourceSHA256, v.Channel = format, file, channel
+	type pair struct {
+		a, b     int
+		strength float64
+	}
+	for _, test := range []struct {
+		name  string
+		all   []*db.Version
+		likes []pair
+		want  []int64
+	}{
+		{
+			"each its own",
+			versionsOf(sensor("a", "5"), sensor("a", "6"), sensor("b", "X"), sensor("b", "Y"), sensor("c", "")),
+			[]pair{{2, 0, 0.999}, {2, 1, 0.995}, {3, 0, 0.994}, {3, 1, 0.998}, {4, 0, 0.996}, {4, 2, 0.997}, {4, 1, 0.993}},
+			[]int64{1, 2, 1, 2, 1},
+		},
+		{
+			"two that are most like each other, beside two sensors",
+			versionsOf(sensor("a", "5"), sensor("a", "6"), sensor("b", ""), sensor("c", "")),
+			[]pair{{2, 0, 0.996}, {2, 1, 0.995}, {3, 1, 0.9961}, {3, 0, 0.995}, {3, 2, 0.9999}},
+			[]int64{0, 2, 2, 2},
+		},
+		{
+			"the same, as much alike",
+			versionsOf(sensor("a", "5"), sensor("a", "6"), sensor("b", ""), sensor("c", "")),
+			[]pair{{2, 0, 0.996}, {2, 1, 0.995}, {3, 1, 0.996}, {3, 0, 0.995}, {3, 2, 0.9999}},
+			[]int64{1, 0, 1, 1},
+		},
+		{
+			"two sensors with the same samples but for a factor",
+			versionsOf(sensor("a", "5"), sensor("a", "6"), sensor("b", "")),
+			[]pair{{1, 0, 1}, {2, 0, 0.996}, {2, 1, 0.996}},
+			[]int64{1, 1, 1},
+		},
+		{
+			"what is apart stays so in a greater group",
+			versionsOf(sensor("a", "5"), sensor("b", ""), sensor("a", "6"), sensor("c", ""), sensor("d", "")),
+			[]pair{{1, 0, 0.999}, {3, 2, 0.998}, {4, 3, 0.997}, {3, 1, 0.996}, {4, 1, 0.995}, {4, 0, 0.994}},
+			[]int64{1, 1, 3, 3, 3},
+		},
+	} {
+		t.Run(test.name, func(t *testing.T) {
+			err := components(t, len(test.all)).Update(t.Context(), func(tx *db.Tx) error {
+				for i := range test.all {
+					for j := range i {
+						l := db.Likeness{FirstID: int64(j + 1), SecondID: int64(i + 1), Kind: "different"}
+						for _, p := range test.likes {
+							if p.a == i && p.b == j {
+								l.Kind, l.Correlation = "similar", p.strength
+								if p.strength == 1 {
+									l.Kind = "scaled"
+								}
+							}
+						}
+						if err := tx.PutLikeness(t.Context(), l); err != nil {
+							return err
+						}
+					}
+				}
+				got, err := newSettler(tx, nil, nil).motions(t.Context(), test.all)
+				if !slices.Equal(got, test.want) {
+					t.Errorf("motions %v, want %v", got, test.want)
+				}
+				return err
+			})
+			if err != nil {
+				t.Fatal(err)
+			}
+		})
+	}
+}
+
+// Equal samples are one motion whatever the rest, unless what is said forbids it, and
+// never within a record.
+func TestEqualSamples(t *testing.T) {
+	equal := func(change func(v *db.Version)) db.Version {
+		v := sensor("a", "")
+		v.Digest = "equal"
+		change(&v)
 		return v
 	}
-	all := []*db.Version{version("a", "1", "5"), version("a", "2", "6"), version("b", "3", "X"), version("b", "4", "Y"), version("c", "5", "")}
-	likes := []like{{2, 0, 0.999}, {2, 1, 0.995}, {3, 0, 0.994}, {3, 1, 0.998}, {4, 0, 0.996}, {4, 2, 0.997}, {4, 1, 0.993}}
-	want := []bool{false, true, true, false, false, false, true}
-	for range 6 {
-		for i, l := range likes {
-			if got := hasRival(all, likes, l); got != want[i] {
-				t.Errorf("%v has a rival: %v, want %v", l, got, want[i])
-			}
+	all := versionsOf(
+		equal(func(*db.Version) {}),
+		equal(func(*db.Version) {}),
+		equal(func(v *db.Version) { v.Channel = "5" }),
+		equal(func(v *db.Version) { v.StationCode = "BBB" }),
+		equal(func(v *db.Version) { v.StationCode, v.Channel = "BBB", "6" }),
+		equal(func(v *db.Version) { v.StationCode = "CCC" }),
+		equal(func(v *db.Version) { v.StationCode = "CCC" }),
+		equal(func(v *db.Version) { v.StationCode, v.Channel = "CCC", "7" }),
+	)
+	for _, v := range all[5:] {
+		v.RecordID = 6
+	}
+	got, err := (&settler{}).motions(t.Context(), all)
+	if want := []int64{1, 1, 1, 4, 4, 0, 0, 0}; err != nil || !slices.Equal(got, want) {
+		t.Errorf("motions %v, %v, want %v", got, err, want)
+	}
+	stopped, stop := context.WithCancel(t.Context())
+	stop()
+	if _, err := (&settler{}).motions(stopped, all); !errors.Is(err, context.Canceled) {
+		t.Errorf("stopped: %v", err)
+	}
+}
+
+// BenchmarkMotions has components of one event, station and direction with equal
+// samples: of which the same is said, and of which each has a channel of its own.
+func BenchmarkMotions(b *testing.B) {
+	for _, said := range []string{"same", "other"} {
+		for _, n := range []int{100, 400, 1600} {
+			b.Run(fmt.Sprintf("said=%s/equal=%d", said, n), func(b *testing.B) {
+				of := make([]db.Version, n)
+				for i := range of {
+					of[i] = sensor("a", "")
+					if of[i].Digest = "equal"; said == "other" {
+						of[i].Channel = fmt.Sprint(i)
+					}
+				}
+				all := versionsOf(of...)
+				for b.Loop() {
+					if _, err := (&settler{}).motions(b.Context(), all); err != nil {
+						b.Fatal(err)
+					}
+				}
+			})
 		}
-		rand.Shuffle(len(likes), func(i, j int) {
-			likes[i], likes[j] = likes[j], likes[i]
-			want[i], want[j] = want[j], want[i]
-		})
 	}
 }
 
