@@ -52,16 +52,28 @@ func areTwoSensors(a, b *db.Version) bool {
 }
 
 // isOneSensorProcessed reports whether two components are, by all that is said of
-// them, of one sensor, in different states of processing. Where many stand side by
+// them, of one sensor, one as recorded and the other corrected. Where many stand side by
 // side, in structures and boreholes, it takes the same channel.
 func isOneSensorProcessed(a, b *db.Version) bool {
 	if a.EventID == 0 || a.EventID != b.EventID || a.StationCode == "" || a.StationCode != b.StationCode || differ(a.Network, b.Network) {
 		return false
 	}
-	if a.Start.IsZero() || b.Start.IsZero() || a.Processing == b.Processing || areTwoSensors(a, b) || differ(a.Instrument, b.Instrument) {
+	if a.Start.IsZero() || b.Start.IsZero() || !areRawAndCorrected(a, b) || areTwoSensors(a, b) || differ(a.Instrument, b.Instrument) {
 		return false
 	}
 	return a.Channel == b.Channel && a.Channel != "" || !differ(a.Channel, b.Channel) && !standsAmongOthers(a) && !standsAmongOthers(b)
+}
+
+// areRawAndCorrected reports whether one of the two says that it is as recorded, but
+// perhaps for its mean, and the other that it is corrected. What says nothing may be
+// in either state, and does not speak for one sensor.
+func areRawAndCorrected(a, b *db.Version) bool {
+	const corrected = string(ingest.ProcessingCorrected)
+	return a.Processing == corrected && isAsRecorded(b) || b.Processing == corrected && isAsRecorded(a)
+}
+
+func isAsRecorded(v *db.Version) bool {
+	return v.Processing == string(ingest.ProcessingRaw) || v.Processing == string(ingest.ProcessingMeanRemoved)
 }
 
 func standsAmongOthers(v *db.Version) bool {

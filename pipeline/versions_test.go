@@ -320,6 +320,8 @@ func TestOneSensorProcessed(t *testing.T) {
 		{"another network", func(v *db.Version) { v.Network = "YY" }, false},
 		{"another siting", func(v *db.Version) { v.Siting = "free-field" }, false},
 		{"raw as well", func(v *db.Version) { v.Processing = "raw" }, false},
+		{"raw but for the mean", func(v *db.Version) { v.Processing = "mean-removed" }, false},
+		{"unknown state", func(v *db.Version) { v.Processing = "unknown" }, false},
 		{"no time", func(v *db.Version) { v.Start = time.Time{} }, false},
 		{"no event", func(v *db.Version) { v.EventID = 0 }, false},
 		{"no station", func(v *db.Version) { v.StationCode = "" }, false},
@@ -330,6 +332,20 @@ func TestOneSensorProcessed(t *testing.T) {
 		test.change(b)
 		if got := isOneSensorProcessed(a, b); got != test.want || isOneSensorProcessed(b, a) != got {
 			t.Errorf("%s: %v, want %v", test.name, got, test.want)
+		}
+	}
+	for _, test := range []struct {
+		a, b string
+		want bool
+	}{
+		{"mean-removed", "corrected", true}, {"mean-removed", "unknown", false}, {"corrected", "unknown", false}, {"corrected", "corrected", false},
+		{"unknown", "unknown", false}, {"mean-removed", "mean-removed", false},
+	} {
+		a, b := full(), full()
+		a.Processing, b.Processing = test.a, test.b
+		a.SourceSHA256, b.SourceSHA256 = "a", "b"
+		if got := isOneSensorProcessed(a, b); got != test.want || isOneSensorProcessed(b, a) != got {
+			t.Errorf("%s and %s: %v, want %v", test.a, test.b, got, test.want)
 		}
 	}
 	a, b := full(), full()
