@@ -106,17 +106,18 @@ type Likeness struct {
 	Kind               string
 	Scale, Correlation float64
 	BandCorrelation    float64 // of what both are between two corners
+	LagS               float64 // by which the first begins after the second where they are most alike
 }
 
 // LikenessOf returns what is stored of two components; ok is false where nothing is.
 func (t *Tx) LikenessOf(ctx context.Context, firstID, secondID int64) (l Likeness, ok bool, err error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT first_id, second_id, kind, scale, correlation, band_correlation FROM likeness WHERE first_id = ? AND second_id = ?`,
+	rows, err := t.tx.QueryContext(ctx, `SELECT first_id, second_id, kind, scale, correlation, band_correlation, lag_s FROM likeness WHERE first_id = ? AND second_id = ?`,
 		min(firstID, secondID), max(firstID, secondID))
 	if err != nil {
 		return l, false, fmt.Errorf("read likeness: %w", err)
 	}
 	found, err := collect(rows, func(l *Likeness) []any {
-		return []any{&l.FirstID, &l.SecondID, &l.Kind, &l.Scale, &l.Correlation, &l.BandCorrelation}
+		return []any{&l.FirstID, &l.SecondID, &l.Kind, &l.Scale, &l.Correlation, &l.BandCorrelation, &l.LagS}
 	})
 	if err != nil || len(found) == 0 {
 		return l, false, err
@@ -126,8 +127,8 @@ func (t *Tx) LikenessOf(ctx context.Context, firstID, secondID int64) (l Likenes
 
 // PutLikeness stores how alike two components are.
 func (t *Tx) PutLikeness(ctx context.Context, l Likeness) error {
-	err := t.exec(ctx, `INSERT INTO likeness (first_id, second_id, kind, scale, correlation, band_correlation) VALUES (?, ?, ?, ?, ?, ?)`,
-		l.FirstID, l.SecondID, l.Kind, l.Scale, l.Correlation, l.BandCorrelation)
+	err := t.exec(ctx, `INSERT INTO likeness (first_id, second_id, kind, scale, correlation, band_correlation, lag_s) VALUES (?, ?, ?, ?, ?, ?, ?)`,
+		l.FirstID, l.SecondID, l.Kind, l.Scale, l.Correlation, l.BandCorrelation, l.LagS)
 	if err != nil {
 		return fmt.Errorf("store likeness: %w", err)
 	}

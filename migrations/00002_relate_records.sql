@@ -38,12 +38,14 @@ CREATE INDEX record_event ON record (event_id, station_id);
 
 -- How alike the samples of two components are that may be one motion: of one
 -- event, station and direction, or of equal samples, as they are and between two
--- corners (package likeness). first_id < second_id.
+-- corners (package likeness). first_id < second_id. The samples of the first begin
+-- lag_s after those of the second where they are most alike.
 CREATE TABLE likeness (
     first_id         INTEGER NOT NULL REFERENCES component (id),
     second_id        INTEGER NOT NULL REFERENCES component (id),
     kind             TEXT NOT NULL CHECK (kind IN ('different', 'near', 'similar', 'scaled', 'identical')),
     scale            REAL NOT NULL,
+    lag_s            REAL NOT NULL,
     correlation      REAL NOT NULL,
     band_correlation REAL NOT NULL,
     PRIMARY KEY (first_id, second_id)

@@ -23,12 +23,19 @@ func (c *comparison) add(v *db.Version) {
 	}
 }
 
-// of returns how much alike the samples of a and b are.
+// of returns how much alike the samples of a and b are, with the lag of a after b.
 func (c *comparison) of(ctx context.Context, a, b *db.Version) (db.Likeness, error) {
 	a, b = c.first[seriesOf(a)], c.first[seriesOf(b)]
-	if a.ComponentID > b.ComponentID {
-		a, b = b, a
+	if a.ComponentID < b.ComponentID {
+		return c.inOrder(ctx, a, b)
 	}
+	l, err := c.inOrder(ctx, b, a)
+	l.LagS = -l.LagS
+	return l, err
+}
+
+// inOrder is of for two of which a has the lower id.
+func (c *comparison) inOrder(ctx context.Context, a, b *db.Version) (db.Likeness, error) {
 	l, ok, err := c.tx.LikenessOf(ctx, a.ComponentID, b.ComponentID)
 	if err != nil || ok {
 		return l, err
@@ -44,6 +51,7 @@ func (c *comparison) of(ctx context.Context, a, b *db.Version) (db.Likeness, err
 	}
 	v := c.comparer.Compare(first, second)
 	l.Kind, l.Scale, l.Correlation, l.BandCorrelation = v.Kind.String(), v.Scale, v.Correlation, v.InBand
+	l.LagS = float64(v.Lag) * v.LagStepS
 	return l, c.tx.PutLikeness(ctx, l)
 }
 

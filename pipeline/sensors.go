@@ -3,6 +3,7 @@ package pipeline
 import (
 	"math"
 	"strings"
+	"time"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -74,6 +75,16 @@ func areRawAndCorrected(a, b *db.Version) bool {
 
 func isAsRecorded(v *db.Version) bool {
 	return v.Processing == string(ingest.ProcessingRaw) || v.Processing == string(ingest.ProcessingMeanRemoved)
+}
+
+// statedTolerance is how far the starts of two components of one motion may be stated
+// from where their samples are most alike: a header may round the time to a second, and
+// the other cut it off.
+const statedTolerance = 1500 * time.Millisecond
+
+// areAtStatedTimes reports whether a starts lagS seconds after b as both state.
+func areAtStatedTimes(a, b *db.Version, lagS float64) bool {
+	return math.Abs(a.Start.Sub(b.Start).Seconds()-lagS) <= statedTolerance.Seconds()
 }
 
 func standsAmongOthers(v *db.Version) bool {

@@ -116,14 +116,14 @@ func (s *settler) likes(ctx context.Context, g *groups) ([]like, error) {
 }
 
 // judge tells of how much alike two components are whether they hold the same motion,
-// exactly or by what strength.
+// exactly or by what strength; l has the lag of a after b.
 func judge(a, b *db.Version, l db.Likeness) (strength float64, exact, same bool) {
 	strength = max(math.Abs(l.Correlation), math.Abs(l.BandCorrelation))
 	switch l.Kind {
 	case likeness.Different.String():
 		return strength, false, false
 	case likeness.Near.String():
-		return strength, false, isOneSensorProcessed(a, b)
+		return strength, false, isOneSensorProcessed(a, b) && areAtStatedTimes(a, b, l.LagS)
 	case likeness.Similar.String():
 		return strength, false, !areTwoSensors(a, b)
 	}

@@ -12,6 +12,7 @@ import (
 	"time"
 
 	"swaybook/db"
+	"swaybook/pipeline/likeness"
 )
 
 // csvOf is the motion of at2 of this seed as a plain column, in gal with so many
@@ -165,6 +166,28 @@ func components(t *testing.T, n int) *db.Store {
 	return store
 }
 
+// motionsOf returns the motion of each component with these likenesses, and leaves the
+// store as it was.
+func motionsOf(t *testing.T, store *db.Store, all []*db.Version, likes []db.Likeness) []int64 {
+	t.Helper()
+	var motions []int64
+	back := errors.New("as it was")
+	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		for _, l := range likes {
+			if err := tx.PutLikeness(t.Context(), l); err != nil {
+				return err
+			}
+		}
+		var err error
+		motions, err = newSettler(tx, nil, nil).motions(t.Context(), all)
+		return cmp.Or(err, back)
+	})
+	if err != back {
+		t.Fatal(err)
+	}
+	return motions
+}
+
 // What one sensor gave is one motion with what it is most like, not with that of the
 // sensor beside it, which it is like, too; and no third one makes one of two sensors.
 func TestSensorsSideBySide(t *testing.T) {
@@ -172,6 +195,7 @@ func TestSensorsSideBySide(t *testing.T) {
 		a, b     int
 		strength float64
 	}
+	store := components(t, 5)
 	for _, test := range []struct {
 		name  string
 		all   []*db.Version
@@ -210,31 +234,23 @@ func TestSensorsSideBySide(t *testing.T) {
 		},
 	} {
 		t.Run(test.name, func(t *testing.T) {
-			err := components(t, len(test.all)).Update(t.Context(), func(tx *db.Tx) error {
-				for i := range test.all {
-					for j := range i {
-						l := db.Likeness{FirstID: int64(j + 1), SecondID: int64(i + 1), Kind: "different"}
-						for _, p := range test.likes {
-							if p.a == i && p.b == j {
-								l.Kind, l.Correlation = "similar", p.strength
-								if p.strength == 1 {
-									l.Kind = "scaled"
-								}
+			var likes []db.Likeness
+			for i := range test.all {
+				for j := range i {
+					l := db.Likeness{FirstID: int64(j + 1), SecondID: int64(i + 1), Kind: "different"}
+					for _, p := range test.likes {
+						if p.a == i && p.b == j {
+							l.Kind, l.Correlation = "similar", p.strength
+							if p.strength == 1 {
+								l.Kind = "scaled"
 							}
 						}
-						if err := tx.PutLikeness(t.Context(), l); err != nil {
-							return err
-						}
 					}
+					likes = append(likes, l)
 				}
-				got, err := newSettler(tx, nil, nil).motions(t.Context(), test.all)
-				if !slices.Equal(got, test.want) {
-					t.Errorf("motions %v, want %v", got, test.want)
-				}
-				return err
-			})
-			if err != nil {
-				t.Fatal(err)
+			}
+			if got := motionsOf(t, store, test.all, likes); !slices.Equal(got, test.want) {
+				t.Errorf("motions %v, want %v", got, test.want)
 			}
 		})
 	}
@@ -270,6 +286,73 @@ func TestEqualSamples(t *testing.T) {
 	stop()
 	if _, err := (&settler{}).motions(stopped, all); !errors.Is(err, context.Canceled) {
 		t.Errorf("stopped: %v", err)
+	}
+}
+
+// One sensor has what is near to each other only at the times that are stated.
+func TestNearAtStatedTimes(t *testing.T) {
+	store := components(t, 2)
+	for _, test := range []struct {
+		startsAfterS, lagS float64 // of the corrected one, as stated and by the samples
+		want               bool
+	}{
+		{0, 0, true}, {0, 1.5, true}, {0, -1.5, true}, {0, 1.51, false}, {0, -1.51, false},
+		{20, 20.4, true}, {-20, -19.6, true}, {20, 0, false}, {20, -20, false}, {-20, 20, false},
+	} {
+		raw, corrected := sensor("a", "5"), sensor("b", "5")
+		raw.Processing, corrected.Processing = "raw", "corrected"
+		raw.Samples, raw.StepS, corrected.Samples, corrected.StepS = 10000, 0.01, 10000, 0.01
+		raw.Start, corrected.Start = quakeTime, quakeTime.Add(time.Duration(test.startsAfterS*float64(time.Second)))
+		for _, all := range [][]*db.Version{versionsOf(raw, corrected), versionsOf(corrected, raw)} {
+			l := db.Likeness{FirstID: 1, SecondID: 2, Kind: "near", BandCorrelation: 0.9, LagS: test.lagS} // of the first after the second
+			if all[0].Processing == "raw" {
+				l.LagS = -test.lagS
+			}
+			if got := motionsOf(t, store, all, []db.Likeness{l}); slices.Equal(got, []int64{1, 1}) != test.want {
+				t.Errorf("%+v, %s first: motions %v", test, all[0].Processing, got)
+			}
+		}
+	}
+}
+
+// The lag is that of the one asked for after the other, whichever is stored first, and
+// of equal samples the same.
+func TestLagOfComponents(t *testing.T) {
+	dir := t.TempDir()
+	text := csvOf(1, 1, 2)
+	lines := strings.SplitAfter(text, "\n")
+	put(t, dir, "a.csv", text)
+	put(t, dir, "b.csv", strings.Join(append(slices.Clone(lines[:2]), lines[2+80:]...), ""))
+	put(t, dir, "c.csv", "# again\n"+text)
+	store, opts := newStore(t), options(dir)
+	opts.Catalogue = catalogue(t, "file,event,station,component\na.csv,EV1,S1,000\nb.csv,EV2,S2,000\nc.csv,EV3,S3,000\n")
+	run(t, store, opts)
+	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		c := comparison{tx: tx, comparer: &likeness.Comparer{}, first: map[series]*db.Version{}, read: map[int64]*likeness.Motion{}}
+		var all []*db.Version
+		for id := range int64(3) {
+			found, err := tx.VersionsOf(t.Context(), id+1)
+			if err != nil || len(found) != 1 {
+				t.Fatalf("record %d: %v, %v", id+1, found, err)
+			}
+			all = append(all, &found[0])
+			c.add(all[id])
+		}
+		for range 2 { // compared, then read
+			for _, of := range []struct {
+				a, b int
+				want float64
+			}{{0, 1, -0.8}, {1, 0, 0.8}, {2, 1, -0.8}, {1, 2, 0.8}} {
+				l, err := c.of(t.Context(), all[of.a], all[of.b])
+				if err != nil || l.Kind != "identical" || l.LagS != of.want || l.FirstID != 1 || l.SecondID != 2 {
+					t.Errorf("%+v: %+v, %v", of, l, err)
+				}
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		t.Fatal(err)
 	}
 }
 
