@@ -3,6 +3,7 @@ package pipeline
 import (
 	"context"
 	"errors"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/pipeline/likeness"
@@ -12,8 +13,12 @@ import (
 type comparison struct {
 	tx       *db.Tx
 	comparer *likeness.Comparer
-	first    map[series]*db.Version     // which is compared for all of the same samples
-	read     map[int64]*likeness.Motion // nil where the store has lost it
+	first    map[series]*db.Version // which is compared for all of the same samples
+	held     heldMotions
+}
+
+func newComparison(tx *db.Tx, comparer *likeness.Comparer, most int) *comparison {
+	return &comparison{tx, comparer, map[series]*db.Version{}, heldMotions{most: most, of: map[int64]heldMotion{}}}
 }
 
 // add makes the component known; they come in the order of their ids.
@@ -41,11 +46,11 @@ func (c *comparison) inOrder(ctx context.Context, a, b *db.Version) (db.Likeness
 		return l, err
 	}
 	l = db.Likeness{FirstID: a.ComponentID, SecondID: b.ComponentID, Kind: likeness.Different.String()}
-	first, err := c.motion(ctx, a)
+	first, err := c.motion(ctx, a, b)
 	if err != nil || first == nil {
 		return l, err
 	}
-	second, err := c.motion(ctx, b)
+	second, err := c.motion(ctx, b, a)
 	if err != nil || second == nil {
 		return l, err
 	}
@@ -55,19 +60,56 @@ func (c *comparison) inOrder(ctx context.Context, a, b *db.Version) (db.Likeness
 	return l, c.tx.PutLikeness(ctx, l)
 }
 
-// motion reads a component's samples; nil where the store has lost them.
-func (c *comparison) motion(ctx context.Context, v *db.Version) (*likeness.Motion, error) {
-	if m, ok := c.read[v.ComponentID]; ok {
-		return m, nil
+// motion reads a component's samples, which are compared with another's; nil where the
+// store has lost them.
+func (c *comparison) motion(ctx context.Context, v, with *db.Version) (*likeness.Motion, error) {
+	if h, ok := c.held.of[v.ComponentID]; ok {
+		return h.motion, nil
 	}
 	samples, err := c.tx.SamplesOf(ctx, v)
 	if errors.Is(err, db.ErrDamaged) {
-		c.read[v.ComponentID] = nil
+		c.held.put(v.ComponentID, with.ComponentID, heldMotion{})
 		return nil, nil
 	}
 	if err != nil {
 		return nil, err
 	}
-	c.read[v.ComponentID], err = likeness.NewMotion(samples, v.StepS)
-	return c.read[v.ComponentID], err
+	m, err := likeness.NewMotion(samples, v.StepS)
+	if err != nil {
+		return nil, err
+	}
+	c.held.put(v.ComponentID, with.ComponentID, heldMotion{m, len(samples)})
+	return m, nil
+}
+
+// mostSamples is how many samples are held at a time, unless one pair has more: 32 MB,
+// and as much for what they are between two corners.
+const mostSamples = 4 << 20
+
+// heldMotions holds what was read of components. Each is compared with all before it in
+// turn, so that what was read first is needed again first, and the rest gives way.
+type heldMotions struct {
+	most, samples int
+	of            map[int64]heldMotion // by component
+	order         []int64              // as they were read
+}
+
+type heldMotion struct {
+	motion  *likeness.Motion // nil where the store has lost it
+	samples int
+}
+
+// put holds the motion of a component, and drops of the others, but for with, what was
+// read last until there is room.
+func (h *heldMotions) put(id, with int64, m heldMotion) {
+	h.samples += m.samples
+	for i := len(h.order) - 1; i >= 0 && h.samples > h.most; i-- {
+		if other := h.order[i]; other != with {
+			h.samples -= h.of[other].samples
+			delete(h.of, other)
+			h.order = slices.Delete(h.order, i, i+1)
+		}
+	}
+	h.of[id] = m
+	h.order = append(h.order, id)
 }

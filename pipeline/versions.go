@@ -90,7 +90,7 @@ func (s *settler) motions(ctx context.Context, all []*db.Version) ([]int64, erro
 // likes compares what may hold the same motion, but for equal samples.
 func (s *settler) likes(ctx context.Context, g *groups) ([]like, error) {
 	var out []like
-	c := comparison{tx: s.tx, comparer: &s.comparer, first: map[series]*db.Version{}, read: map[int64]*likeness.Motion{}}
+	c := newComparison(s.tx, &s.comparer, mostSamples)
 	for _, v := range g.all {
 		c.add(v)
 	}

@@ -328,7 +328,7 @@ func TestLagOfComponents(t *testing.T) {
 	opts.Catalogue = catalogue(t, "file,event,station,component\na.csv,EV1,S1,000\nb.csv,EV2,S2,000\nc.csv,EV3,S3,000\n")
 	run(t, store, opts)
 	err := store.Update(t.Context(), func(tx *db.Tx) error {
-		c := comparison{tx: tx, comparer: &likeness.Comparer{}, first: map[series]*db.Version{}, read: map[int64]*likeness.Motion{}}
+		c := newComparison(tx, &likeness.Comparer{}, mostSamples)
 		var all []*db.Version
 		for id := range int64(3) {
 			found, err := tx.VersionsOf(t.Context(), id+1)
@@ -353,6 +353,53 @@ func TestLagOfComponents(t *testing.T) {
 	})
 	if err != nil {
 		t.Fatal(err)
+	}
+}
+
+// What is held of motions stays within its bound, and nothing that is said of them
+// depends on it.
+func TestHeldMotions(t *testing.T) {
+	const n, samples = 7, 600
+	store := components(t, n)
+	var want []db.Likeness
+	for _, test := range []struct{ most, held int }{{n * samples, n}, {4 * samples, 4}, {3*samples - 1, 2}, {0, 2}} {
+		back := errors.New("as it was")
+		err := store.Update(t.Context(), func(tx *db.Tx) error {
+			c := newComparison(tx, &likeness.Comparer{}, test.most)
+			var got []db.Likeness
+			var all []*db.Version
+			for id := range int64(n) {
+				found, err := tx.VersionsOf(t.Context(), id+1)
+				if err != nil {
+					return err
+				}
+				all = append(all, &found[0])
+				c.add(all[id])
+				for j := range id {
+					l, err := c.of(t.Context(), all[id], all[j])
+					if err != nil {
+						return err
+					}
+					got = append(got, l)
+					if len(c.held.of) > test.held || len(c.held.order) != len(c.held.of) || c.held.samples != samples*len(c.held.of) {
+						t.Fatalf("at most %d samples: %d in %d motions, %v", test.most, c.held.samples, len(c.held.of), c.held.order)
+					}
+				}
+			}
+			if len(c.held.of) != test.held {
+				t.Errorf("at most %d samples: %d motions, want %d", test.most, len(c.held.of), test.held)
+			}
+			if want == nil {
+				want = got
+			}
+			if !slices.Equal(got, want) {
+				t.Errorf("at most %d samples: %v, want %v", test.most, got, want)
+			}
+			return back
+		})
+		if err != back {
+			t.Fatal(err)
+		}
 	}
 }
 

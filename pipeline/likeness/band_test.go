@@ -47,8 +47,8 @@ func TestNothingInTheBand(t *testing.T) {
 		{"a step of 0.2 s", invented(t, 5, 20e3, 1), 0.2},
 		{"a step of a nanosecond", invented(t, 5, 20e3, 1), 1e-9},
 	} {
-		if m := motion(t, c.x, c.stepS); m.band != nil {
-			t.Errorf("%s: a band of %d samples with the unit %v", c.name, len(m.band.samples), m.band.unit)
+		if m := motion(t, c.x, c.stepS); m.inBand() != nil {
+			t.Errorf("%s: a band of %d samples with the unit %v", c.name, len(m.inBand().samples), m.inBand().unit)
 		}
 	}
 }

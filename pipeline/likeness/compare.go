@@ -87,14 +87,13 @@ func (c *Comparer) compareInBand(a, b *Motion) Verdict {
 // bandsOf returns both motions between the corners that both have; nil where that
 // leaves nothing.
 func bandsOf(a, b *Motion) (inA, inB *Motion) {
-	inA, inB = a.band, b.band
 	switch cornerA, cornerB := cornerOf(a.stepS), cornerOf(b.stepS); {
 	case cornerA > cornerB:
-		inA = a.banded(cornerB)
+		return a.banded(cornerB), b.inBand()
 	case cornerB > cornerA:
-		inB = b.banded(cornerA)
+		return a.inBand(), b.banded(cornerA)
 	}
-	return inA, inB
+	return a.inBand(), b.inBand()
 }
 
 // compare compares two series by these limits.

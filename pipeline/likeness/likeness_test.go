@@ -6,6 +6,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"sync"
 	"testing"
 )
 
@@ -323,6 +324,24 @@ func FuzzCompare(f *testing.F) {
 			t.Errorf("a motion and itself: %+v", v)
 		}
 	})
+}
+
+// TestSharedMotion compares one motion in several goroutines, each of which may be the
+// first to ask for its band.
+func TestSharedMotion(t *testing.T) {
+	x := invented(t, 6, 30e3, 1)
+	a, b := motion(t, x, stepS), motion(t, ramp.at(x, 0.5, nil), stepS)
+	var verdicts [4]Verdict
+	var wait sync.WaitGroup
+	for i := range verdicts {
+		wait.Go(func() { verdicts[i] = new(Comparer).Compare(a, b) })
+	}
+	wait.Wait()
+	for _, v := range verdicts {
+		if v != verdicts[0] || v.Kind != Similar {
+			t.Errorf("%+v, want similar, as %+v", v, verdicts[0])
+		}
+	}
 }
 
 // TestComparerKeepsNothing: what was compared before changes nothing.

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"sync"
 )
 
 const (
@@ -21,29 +22,29 @@ var (
 )
 
 // Motion is a series of samples with what is known of it before any comparison.
-// It is immutable and safe for concurrent use.
+// It is safe for concurrent use.
 type Motion struct {
 	samples  []float64
 	stepS    float64
-	unit     float64 // 1 over the greatest |sample|
-	mean     float64 // of samples times unit
-	energy   float64 // Σ(sample·unit − mean)²
-	extremes []int   // where the greatest swings are, the greatest first
-	band     *Motion // between lowHz and cornerOf its step; nil where that leaves nothing
+	unit     float64        // 1 over the greatest |sample|
+	mean     float64        // of samples times unit
+	energy   float64        // Σ(sample·unit − mean)²
+	extremes []int          // where the greatest swings are, the greatest first
+	inBand   func() *Motion // between lowHz and cornerOf its step; nil where that leaves nothing
 }
 
 // NewMotion describes samples, in any unit, taken every stepS seconds. The slice is
 // kept, not copied, and must not change while the Motion is in use.
 //
 // It is an error if there are no samples, if one is not finite, or if stepS is not
-// positive and finite. Cost: some ten passes over the samples, of which a filtered
-// copy is kept.
+// positive and finite. Cost: some passes over the samples. A filtered copy, which
+// costs three times that, is made and kept when a comparison first asks for it.
 func NewMotion(samples []float64, stepS float64) (*Motion, error) {
 	m, err := describe(samples, stepS)
 	if err != nil {
 		return nil, err
 	}
-	m.band = m.banded(cornerOf(stepS))
+	m.inBand = sync.OnceValue(func() *Motion { return m.banded(cornerOf(stepS)) })
 	return m, nil
 }
 

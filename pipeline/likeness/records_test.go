@@ -56,7 +56,7 @@ func TestRecordings(t *testing.T) {
 			}
 			if a.stepS == b.stepS {
 				most = max(most, correlated(&comparer, a, b))
-				mostInBand = max(mostInBand, correlated(&comparer, a.band, b.band))
+				mostInBand = max(mostInBand, correlated(&comparer, a.inBand(), b.inBand()))
 			}
 		}
 		for _, c := range []struct {
