@@ -31,24 +31,43 @@ func TestBandInClosedForm(t *testing.T) {
 	}
 }
 
-// TestNothingInTheBand: constants, ramps and samples too far apart leave nothing.
+// TestNothingInTheBand: constants, and samples too far or too near, leave nothing.
 func TestNothingInTheBand(t *testing.T) {
-	ramp := make([]float64, 4000)
-	for i := range ramp {
-		ramp[i] = 5 + 0.25*float64(i)
-	}
+	x := invented(t, 5, 20e3, 1)
 	for _, c := range []struct {
 		name  string
 		x     []float64
 		stepS float64
 	}{
-		{"constant", changed(ramp, 0, 3), 0.01},
-		{"one sample", ramp[:1], 0.01},
-		{"a step of 0.2 s", invented(t, 5, 20e3, 1), 0.2},
-		{"a step of a nanosecond", invented(t, 5, 20e3, 1), 1e-9},
+		{"constant", changed(x, 0, 3), 0.01},
+		{"one sample", x[:1], 0.01},
+		{"a step of 0.2 s", x, 0.2},
+		{"a step of a nanosecond", x, 1e-9},
 	} {
 		if m := motion(t, c.x, c.stepS); m.inBand() != nil {
 			t.Errorf("%s: a band of %d samples with the unit %v", c.name, len(m.inBand().samples), m.inBand().unit)
 		}
+	}
+}
+
+// TestRampInTheBand: far from its ends, a ramp leaves nothing, and so two ramps have no
+// motion in common.
+func TestRampInTheBand(t *testing.T) {
+	straight := make([]float64, 4000)
+	for i := range straight {
+		straight[i] = 5 + 0.25*float64(i)
+	}
+	a, b := motion(t, straight, 0.01), motion(t, changed(straight, -3, 7), 0.01)
+	inBand := a.inBand()
+	if inBand == nil {
+		t.Fatal("no band: want the ends of the ramp")
+	}
+	for i, y := range inBand.samples[1000:3000] {
+		if math.Abs(y) > 1e-9 {
+			t.Fatalf("sample %d of a ramp is %v in the band, want 0", 1000+i, y)
+		}
+	}
+	if v := new(Comparer).Compare(a, b); v.Kind != Different {
+		t.Errorf("two ramps: %+v, want different", v)
 	}
 }

@@ -50,20 +50,19 @@
 // what distance does: in 0.3–15 Hz raw and corrected 0.5–15 Hz keep 0.98 only, and a
 // sensor 50 m away reaches as much as in this one.
 //
-// Limits of use. Sensors on one foundation or floor may be Similar, since their
-// motions are: no correlation tells them apart. Nor does Near tell points 50 m from
-// each other apart. A filter that turns phases, run forward only, leaves less the higher
-// its low corner is. A shift by a fraction of a step is no lag:
-// half a step of 0.01 s turns a wave of 5 Hz by 9 degrees, ρ = 0.988. Start times are not asked for: headers give that of the trigger
-// or of the first sample, in local or universal time; a caller who trusts them need not
-// compare what they keep apart.
+// Limits of use. Sensors on one foundation or floor may be Similar, since their motions
+// are: no correlation tells them apart. Nor does Near tell points 50 m from each other
+// apart. A filter that turns phases, run forward only, leaves less the higher its low
+// corner is. A shift by a fraction of a step is no lag: half a step of 0.01 s turns a
+// wave of 5 Hz by 9 degrees, ρ = 0.988. Start times are not asked for: headers give that
+// of the trigger or of the first sample, in local or universal time. A caller who trusts
+// them need not compare what they keep apart, and has the lag to compare with them.
 //
 // How it works. NewMotion keeps the places of a few great swings of each series; pairs
-// that look alike around none of them are Different at the cost of some microseconds
-// (file extremes.go). The rest are correlated at all lags by Fourier transform (file
-// search.go). Where steps differ, every sample of the coarser series meets the finer
-// one, which is interpolated only if the ratio of the steps is not whole (file
-// steps.go).
+// that look alike around none of them are Different at the cost of some microseconds.
+// The rest are correlated at all lags by Fourier transform. Where steps differ, every
+// sample of the coarser series meets the finer one, which is interpolated only if the
+// ratio of the steps is not whole.
 //
 // Start at NewMotion and Comparer.Compare.
 package likeness

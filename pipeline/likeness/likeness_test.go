@@ -84,8 +84,8 @@ func TestOverlap(t *testing.T) {
 
 // TestCorrelationInClosedForm adds to a sine another of c times its size that is
 // orthogonal to it over the whole series: ρ = 1/√(1 + c²). All lags but 0 correlate
-// less, since the envelope falls. The step is so great that no band
-// is left between the corners.
+// less, since the envelope falls. The step is so great that no band is left between the
+// corners.
 func TestCorrelationInClosedForm(t *testing.T) {
 	const n = 4000
 	wave := func(cycles int) []float64 {
@@ -204,8 +204,15 @@ func TestNearbyStationsAreNotSimilar(t *testing.T) {
 				y[i] = math.Sqrt(share)*x[i] + math.Sqrt(1-share)*z[i]
 			}
 			v := compareBoth(t, motion(t, x, stepS), motion(t, y, stepS))
-			if v.Kind > Near || (v.Kind == Different) != (share == 0.5) || !near(v.InBand, math.Sqrt(share), 0.15) && share > 0.5 {
-				t.Errorf("seed %d, share %v: %+v", seed, share, v)
+			want := Near
+			if share == 0.5 {
+				want = Different
+			}
+			if v.Kind != want {
+				t.Errorf("seed %d, share %v: %+v, want %v", seed, share, v, want)
+			}
+			if share > 0.5 && !near(v.InBand, math.Sqrt(share), 0.15) {
+				t.Errorf("seed %d, share %v: %v in the band, want some %v", seed, share, v.InBand, math.Sqrt(share))
 			}
 			if v.Kind == Different && (v.Reason == "" || v.Scale != 0 || v.Offset != 0) {
 				t.Errorf("seed %d, share %v: %+v, want a reason and no scale", seed, share, v)
@@ -287,7 +294,7 @@ func TestGreatAndSmallNumbers(t *testing.T) {
 }
 
 func TestKindString(t *testing.T) {
-	for k, want := range map[Kind]string{Different: "different", Similar: "similar", Scaled: "scaled", Identical: "identical"} {
+	for k, want := range map[Kind]string{Different: "different", Near: "near", Similar: "similar", Scaled: "scaled", Identical: "identical"} {
 		if k.String() != want {
 			t.Errorf("Kind %d is %q, want %q", int(k), k, want)
 		}
