@@ -55,6 +55,30 @@ func (t *Tx) Related(ctx context.Context, recordID int64) ([]int64, error) {
 	return collect(rows, func(id *int64) []any { return []any{id} })
 }
 
+// Relation is one of the things by which Related finds records: the event and the codes
+// of a station, samples with the event and the station's code, or a motion.
+type Relation struct {
+	EventID              int64
+	Network, StationCode string
+	Digest               string
+	MotionID             int64
+}
+
+// RelationsOf returns the relations of a record. Another one that has all of them has
+// the same related records.
+func (t *Tx) RelationsOf(ctx context.Context, recordID int64) ([]Relation, error) {
+	rows, err := t.tx.QueryContext(ctx, `WITH this AS (
+			SELECT coalesce(e.primary_id, e.id, 0) AS quake, coalesce(s.network, '') AS network, coalesce(s.code, '') AS code
+			FROM record r LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id WHERE r.id = ?1)
+		SELECT quake, network, code, '', 0 FROM this
+		UNION ALL SELECT quake, '', code, x.sha256, 0 FROM this CROSS JOIN component c ON c.record_id = ?1 CROSS JOIN series x ON x.component_id = c.id
+		UNION ALL SELECT 0, '', '', '', motion_id FROM component WHERE record_id = ?1 AND motion_id IS NOT NULL`, recordID)
+	if err != nil {
+		return nil, fmt.Errorf("read versions: %w", err)
+	}
+	return collect(rows, func(r *Relation) []any { return []any{&r.EventID, &r.Network, &r.StationCode, &r.Digest, &r.MotionID} })
+}
+
 // VersionsOf returns the components of a record.
 func (t *Tx) VersionsOf(ctx context.Context, recordID int64) ([]Version, error) {
 	return versions(ctx, t.tx, `SELECT `+versionColumns+` WHERE c.record_id = ? ORDER BY c.id`, recordID)

@@ -46,10 +46,22 @@ func (s *settler) versions(ctx context.Context, recordID int64) error {
 }
 
 // related returns the record and all that are connected with it by what
-// db.Tx.Related says.
+// db.Tx.Related says. It asks that only of records with a relation that none before had:
+// of many that hold one motion each is related to all.
 func (s *settler) related(ctx context.Context, recordID int64) ([]int64, error) {
-	records, seen := []int64{recordID}, map[int64]bool{recordID: true}
+	records, seen, followed := []int64{recordID}, map[int64]bool{recordID: true}, map[db.Relation]bool{}
 	for i := 0; i < len(records); i++ { // appended to below
+		relations, err := s.tx.RelationsOf(ctx, records[i])
+		if err != nil {
+			return nil, err
+		}
+		before := len(followed)
+		for _, r := range relations {
+			followed[r] = true
+		}
+		if len(followed) == before {
+			continue
+		}
 		found, err := s.tx.Related(ctx, records[i])
 		if err != nil {
 			return nil, err

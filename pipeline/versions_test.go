@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"math/rand/v2"
+	"path/filepath"
 	"slices"
 	"strings"
 	"testing"
@@ -101,6 +102,52 @@ func TestVersionsDoNotDependOnOrder(t *testing.T) {
 				t.Errorf("%v: %d components of one motion, want 4", files, n)
 			}
 		}
+	}
+}
+
+// Records are related by way of others, from whichever one starts: by event and station,
+// by equal samples that nothing forbids, and whatever the network.
+func TestRelatedByWayOfOthers(t *testing.T) {
+	dir := t.TempDir()
+	for name, text := range map[string]string{
+		"a.csv": csvOf(1, 1, 2), "b.csv": csvOf(2, 1, 2), "c/copy.csv": "# again\n" + csvOf(2, 1, 2), "d/copy.csv": "# and again\n" + csvOf(2, 1, 2),
+		"e.csv": csvOf(3, 1, 2), "f.csv": "# of another station\n" + csvOf(1, 1, 2),
+	} {
+		put(t, dir, name, text)
+	}
+	store, opts := newStore(t), options(dir)
+	opts.Catalogue = catalogue(t, "file,event,station,network,component\na.csv,EV1,S1,AA,000\nb.csv,EV1,S1,,000\nc/copy.csv,,,,000\nd/copy.csv,,,,000\n"+
+		"e.csv,EV1,S1,BB,000\nf.csv,EV1,S2,AA,000\n")
+	run(t, store, opts)
+	var records []int64
+	of := map[int64]string{}
+	for _, c := range componentsOf(t, store) {
+		records = append(records, c.RecordID)
+		of[c.RecordID] = strings.TrimPrefix(filepath.ToSlash(c.SourcePath), filepath.ToSlash(dir)+"/")
+	}
+	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		for _, id := range records {
+			found, err := newSettler(tx, nil, nil).related(t.Context(), id)
+			if err != nil {
+				return err
+			}
+			var names []string
+			for _, r := range found {
+				names = append(names, of[r])
+			}
+			slices.Sort(names)
+			want := "a.csv b.csv c/copy.csv d/copy.csv e.csv"
+			if of[id] == "f.csv" {
+				want = "f.csv"
+			}
+			if got := strings.Join(names, " "); got != want {
+				t.Errorf("%s is related to %s, want %s", of[id], got, want)
+			}
+		}
+		return nil
+	})
+	if err != nil || len(records) != 6 {
+		t.Fatalf("%d records, %v", len(records), err)
 	}
 }
 
