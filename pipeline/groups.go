@@ -173,9 +173,6 @@ func (g *groups) seriesPair(i, j int) [2]int {
 // other: what one sensor gave is like what those beside it gave, and most like its own.
 // at has the likes of each component, the strongest first.
 func (g *groups) hasRival(at [][]like, l like) bool {
-	if l.exact {
-		return false
-	}
 	for _, ends := range [][2]int{{l.i, l.j}, {l.j, l.i}} {
 		shared, other := ends[0], ends[1]
 		for _, r := range at[shared] {

@@ -89,6 +89,9 @@ func TestVersionsDoNotDependOnOrder(t *testing.T) {
 			for _, c := range found {
 				motions[c.MotionID]++
 			}
+			if len(found) > 0 && found[0].MotionID != found[0].ComponentID { // in the order of ids
+				t.Errorf("%v: motion %d of component %d, want the least", files, found[0].MotionID, found[0].ComponentID)
+			}
 			return err
 		})
 		if err != nil {
@@ -116,8 +119,8 @@ func TestRelatedByWayOfOthers(t *testing.T) {
 		put(t, dir, name, text)
 	}
 	store, opts := newStore(t), options(dir)
-	opts.Catalogue = catalogue(t, "file,event,station,network,component\na.csv,EV1,S1,AA,000\nb.csv,EV1,S1,,000\nc/copy.csv,,,,000\nd/copy.csv,,,,000\n"+
-		"e.csv,EV1,S1,BB,000\nf.csv,EV1,S2,AA,000\n")
+	opts.Catalogue = catalogue(t, "file,event,station,network,component\na.csv,EV1,S1,AA,000\nb.csv,EV1,S1,AA,000\nc/copy.csv,,,,000\nd/copy.csv,,,,000\n"+
+		"e.csv,EV1,S1,,000\nf.csv,EV1,S2,AA,000\n")
 	run(t, store, opts)
 	var records []int64
 	of := map[int64]string{}
@@ -126,6 +129,15 @@ func TestRelatedByWayOfOthers(t *testing.T) {
 		of[c.RecordID] = strings.TrimPrefix(filepath.ToSlash(c.SourcePath), filepath.ToSlash(dir)+"/")
 	}
 	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		for id := range of { // which would relate them, too
+			held, err := tx.VersionsOf(t.Context(), id)
+			if err != nil {
+				return err
+			}
+			if err := tx.SetMotion(t.Context(), held[0].ComponentID, 0); err != nil {
+				return err
+			}
+		}
 		for _, id := range records {
 			found, err := newSettler(tx, nil, nil).related(t.Context(), id)
 			if err != nil {
@@ -256,6 +268,12 @@ func TestSensorsSideBySide(t *testing.T) {
 			[]int64{1, 2, 1, 2, 1},
 		},
 		{
+			"what is most like a sensor that another one is nearer to is not of the next",
+			versionsOf(sensor("a", "5"), sensor("a", "6"), sensor("b", "X"), sensor("b", "Y")),
+			[]pair{{3, 0, 0.999}, {2, 0, 0.998}, {2, 1, 0.995}},
+			[]int64{1, 0, 0, 1},
+		},
+		{
 			"two that are most like each other, beside two sensors",
 			versionsOf(sensor("a", "5"), sensor("a", "6"), sensor("b", ""), sensor("c", "")),
 			[]pair{{2, 0, 0.996}, {2, 1, 0.995}, {3, 1, 0.9961}, {3, 0, 0.995}, {3, 2, 0.9999}},
@@ -321,12 +339,16 @@ func TestEqualSamples(t *testing.T) {
 		equal(func(v *db.Version) { v.StationCode = "CCC" }),
 		equal(func(v *db.Version) { v.StationCode = "CCC" }),
 		equal(func(v *db.Version) { v.StationCode, v.Channel = "CCC", "7" }),
+		equal(func(v *db.Version) { v.StationCode = "DDD" }),
+		equal(func(v *db.Version) { v.StationCode = "DDD" }),
+		equal(func(v *db.Version) { v.StationCode, v.Channel = "DDD", "8" }),
 	)
-	for _, v := range all[5:] {
+	for _, v := range all[5:8] {
 		v.RecordID = 6
 	}
+	all[10].RecordID = all[8].RecordID // one with the record between them
 	got, err := (&settler{}).motions(t.Context(), all)
-	if want := []int64{1, 1, 1, 4, 4, 0, 0, 0}; err != nil || !slices.Equal(got, want) {
+	if want := []int64{1, 1, 1, 4, 4, 0, 0, 0, 9, 9, 9}; err != nil || !slices.Equal(got, want) {
 		t.Errorf("motions %v, %v, want %v", got, err, want)
 	}
 	stopped, stop := context.WithCancel(t.Context())
