@@ -164,7 +164,7 @@ func TestNoOpenFusing(t *testing.T) {
 	if err != nil {
 		t.Skip("no go command in the path")
 	}
-	packages := []string{".", "../internal/kernel", "../geodesy", "../likeness"}
+	packages := []string{".", "../internal/kernel", "../geodesy", "../likeness", "../signal", "../condition", "../quality", "../intensity"}
 	for _, dir := range packages {
 		if _, err := os.ReadDir(dir); err != nil { // tells the cache of test results what this one depends on
 			t.Fatal(err)

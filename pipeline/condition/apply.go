@@ -1,0 +1,229 @@
+package condition
+
+import (
+	"fmt"
+	"math"
+	"slices"
+
+	"swaybook/pipeline/signal"
+)
+
+// Component is one component as it was delivered.
+type Component struct {
+	Acceleration []float64 // m/s², not changed
+	StepS        float64
+	State        string // of processing
+	// LowCutHz and HighCutHz are the corners that the header states, NaN where it does
+	// not.
+	LowCutHz, HighCutHz float64
+}
+
+// Conditioned is a component after a recipe.
+type Conditioned struct {
+	// Acceleration in m/s² is that of the component itself where nothing was done.
+	Acceleration []float64
+	StepS        float64
+	// LeadS is how much earlier than the component's first sample the first one here is,
+	// in s; negative after a trim.
+	LeadS float64
+	// LowCutHz and HighCutHz are the corners of all filters that the motion has behind
+	// it, here or before, NaN where none is known.
+	LowCutHz, HighCutHz float64
+	// Oversampled is by how much the step is finer than the component's.
+	Oversampled int
+}
+
+// Apply carries out the recipe. The error says which step cannot be done and why.
+func (r Recipe) Apply(c Component) (Conditioned, error) {
+	out := Conditioned{
+		Acceleration: c.Acceleration, StepS: c.StepS, LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz, Oversampled: 1,
+	}
+	if !r.AppliesTo(c.State) || len(r.Steps) == 0 {
+		return out, nil
+	}
+	w := &work{Conditioned: out}
+	w.Acceleration = slices.Clone(c.Acceleration)
+	for i, s := range r.Steps {
+		if err := w.do(s); err != nil {
+			return out, &StepError{Step: i + 1, Kind: s.Do, Err: err}
+		}
+	}
+	w.cutPads()
+	return w.Conditioned, nil
+}
+
+// work is a motion between two steps: before and after are the zeros that stand for
+// the time before and after what was recorded.
+type work struct {
+	Conditioned
+	before, after int
+	// noise is how far the motion stands out, by frequency, once a step has asked. A
+	// filter changes motion and noise alike.
+	noise    ratios
+	hasNoise bool
+	asked    bool
+}
+
+// cornerOf is the fixed corner, or what choose makes of the noise.
+func (w *work) cornerOf(s Step, choose func(ratios, NoiseRule) float64) float64 {
+	if s.ByNoise == nil {
+		return s.CornerHz
+	}
+	if !w.asked {
+		w.noise, w.hasNoise = ratiosOf(w.recorded(), w.StepS)
+		w.asked = true
+	}
+	if !w.hasNoise {
+		return s.ByNoise.ElseHz
+	}
+	return choose(w.noise, *s.ByNoise)
+}
+
+// recorded is the motion without its pads.
+func (w *work) recorded() []float64 {
+	return w.Acceleration[w.before : len(w.Acceleration)-w.after]
+}
+
+func (w *work) do(s Step) error {
+	switch s.Do {
+	case KindMean:
+		w.takeMean(s.Window)
+	case KindTrend:
+		signal.Detrend(w.recorded(), s.Degree)
+	case KindTaper:
+		n := int(s.Share * float64(len(w.recorded())))
+		signal.Taper(w.recorded(), n, n)
+	case KindTrim:
+		return w.trim(s.FromS, s.ToS)
+	case KindOversample:
+		w.oversample(s.Factor)
+	case KindHighPass:
+		return w.highPass(s)
+	case KindLowPass:
+		return w.lowPass(s)
+	}
+	return nil
+}
+
+func (w *work) takeMean(window Window) {
+	x := w.recorded()
+	part := x
+	if n := quietSamples(x, w.StepS); window == WindowPreEvent && n > 0 {
+		part = x[:n]
+	}
+	signal.Subtract(x, signal.Mean(part))
+}
+
+// trim keeps the recorded samples from fromS on, and up to toS where that is not 0.
+func (w *work) trim(fromS, toS float64) error {
+	x := w.recorded()
+	from, to := int(math.Round(fromS/w.StepS)), len(x)
+	if toS > 0 {
+		to = min(to, int(math.Round(toS/w.StepS))+1)
+	}
+	if to-from < leastSamples {
+		return fmt.Errorf("%d samples would be left of %d", max(0, to-from), len(x))
+	}
+	w.Acceleration = w.Acceleration[w.before+from : w.before+to]
+	w.LeadS -= float64(float64(w.before+from) * w.StepS)
+	w.before, w.after = 0, 0
+	return nil
+}
+
+// leastSamples is the shortest motion that a trim leaves.
+const leastSamples = 10
+
+func (w *work) oversample(factor int) {
+	// Pads of a tenth of a second keep the ends from ringing into each other.
+	w.pad(int(math.Ceil(0.1/w.StepS)), int(math.Ceil(0.1/w.StepS)))
+	w.Acceleration = signal.Resample(w.Acceleration, factor)
+	w.StepS /= float64(factor)
+	w.Oversampled *= factor
+	w.before *= factor
+	w.after = w.after*factor + factor - 1 // zeros between the last sample and the first pad
+}
+
+// pad sees to it that so many zeros at least stand at either end.
+func (w *work) pad(before, after int) {
+	before, after = max(0, before-w.before), max(0, after-w.after)
+	if before+after == 0 {
+		return
+	}
+	n := len(w.Acceleration)
+	x := make([]float64, before+n+after)
+	copy(x[before:], w.Acceleration)
+	w.Acceleration = x
+	w.LeadS += float64(float64(before) * w.StepS)
+	w.before, w.after = w.before+before, w.after+after
+}
+
+func (w *work) highPass(s Step) error {
+	corner := w.cornerOf(s, ratios.lowCorner)
+	if corner == 0 {
+		return nil
+	}
+	if w.LowCutHz > corner {
+		corner = w.LowCutHz // what is below is gone
+	}
+	f, err := signal.HighPass(s.Order, corner, w.StepS)
+	if err != nil {
+		return err
+	}
+	w.filter(f)
+	w.LowCutHz = corner
+	return nil
+}
+
+// lowPass leaves a motion alone that has nothing above the corner: one whose header
+// states a lower one, or whose sampling is too coarse.
+func (w *work) lowPass(s Step) error {
+	corner := w.cornerOf(s, ratios.highCorner)
+	if corner == 0 || corner >= w.HighCutHz || corner >= 0.5/w.StepS*maxNyquistShare {
+		return nil
+	}
+	f, err := signal.LowPass(s.Order, corner, w.StepS)
+	if err != nil {
+		return err
+	}
+	w.filter(f)
+	w.HighCutHz = corner
+	return nil
+}
+
+// maxNyquistShare is the share of half the sampling rate from which on a low-pass
+// filter has nothing to do that the recorder's has not done (common practice).
+const maxNyquistShare = 0.8
+
+func (w *work) filter(f signal.Filter) {
+	pad := int(math.Ceil(f.PadS() / w.StepS))
+	w.pad(pad, pad)
+	f.TwoWay(w.Acceleration)
+}
+
+// quietShare is the share of the greatest acceleration below which the ends of pads say
+// nothing: their part of a displacement of period T is below 1e-5·(T/2π)²·PGA.
+const quietShare = 1e-5
+
+// cutPads takes the ends of the pads off that hold next to nothing.
+func (w *work) cutPads() {
+	limit := quietShare * greatest(w.Acceleration)
+	n := len(w.Acceleration)
+	from, to := 0, n
+	for from < w.before && math.Abs(w.Acceleration[from]) <= limit {
+		from++
+	}
+	for to > n-w.after && math.Abs(w.Acceleration[to-1]) <= limit {
+		to--
+	}
+	w.Acceleration = w.Acceleration[from:to]
+	w.LeadS -= float64(float64(from) * w.StepS)
+	w.before, w.after = w.before-from, w.after-(n-to)
+}
+
+func greatest(x []float64) float64 {
+	top := 0.0
+	for _, v := range x {
+		top = max(top, math.Abs(v))
+	}
+	return top
+}

@@ -1,0 +1,32 @@
+package condition
+
+import "math"
+
+// The shares of corners at which a band ends, and the steps a period below which a
+// spectrum is doubtful (common practice).
+const (
+	longShare     = 0.8
+	shortShare    = 0.8
+	DoubtfulSteps = 10
+)
+
+// UsableBand returns the periods in s between which the component's spectrum can be
+// believed:
+//
+//	toS   = 0.8/fl, fl the corner of the high-pass filters, +Inf where none is known;
+//	fromS = 1/(0.8·fh), fh the corner of the low-pass filters or half the sampling rate
+//	        of the component as delivered, whichever is lower.
+//
+// fromS is not below toS where filters leave no band at all. The limits are common
+// practice; for the long one see D. M. Boore and J. J. Bommer (2005).
+func (c Conditioned) UsableBand() (fromS, toS float64) {
+	high := 0.5 / (c.StepS * float64(c.Oversampled))
+	if c.HighCutHz < high {
+		high = c.HighCutHz
+	}
+	toS = math.Inf(1)
+	if c.LowCutHz > 0 {
+		toS = longShare / c.LowCutHz
+	}
+	return 1 / (shortShare * high), toS
+}

@@ -1,0 +1,107 @@
+package condition
+
+import (
+	"encoding/json"
+	"fmt"
+	"strings"
+	"testing"
+)
+
+const ownRecipe = `# invented, for the quays of Northwater
+name = "northwater-quays"
+explain = "fixed corners, finer steps"
+states = ["raw", "unknown"]
+[[step]]
+do = "trend"
+degree = 1
+[[step]]
+do = "high-pass"
+order = 4
+corner_hz = 0.15
+[[step]]
+do = "oversample"
+factor = 4
+`
+
+func TestParse(t *testing.T) {
+	r, err := Parse([]byte(ownRecipe))
+	if err != nil {
+		t.Fatal(err)
+	}
+	const want = `{"name":"northwater-quays","states":["raw","unknown"],"steps":[` +
+		`{"do":"trend","degree":1},{"do":"high-pass","order":4,"corner_hz":0.15},{"do":"oversample","factor":4}]}`
+	if got := r.Canonical(); got != want {
+		t.Errorf("got %s, want %s", got, want)
+	}
+	if !r.AppliesTo("unknown") || r.AppliesTo("corrected") {
+		t.Error("applies to other states than it says")
+	}
+	var back Recipe
+	if err := json.Unmarshal([]byte(r.Canonical()), &back); err != nil || back.Hash() != r.Hash() {
+		t.Errorf("read back: %v, %v", back, err)
+	}
+}
+
+// What identifies a generation must not change unnoticed.
+func TestHashes(t *testing.T) {
+	seen := map[string]bool{}
+	for _, r := range BuiltIn() {
+		if err := r.Validate(); err != nil {
+			t.Errorf("%s: %v", r.Name, err)
+		}
+		if len(r.Hash()) != 64 || seen[r.Hash()] {
+			t.Errorf("%s: hash %s", r.Name, r.Hash())
+		}
+		seen[r.Hash()] = true
+	}
+	explained := Standard()
+	explained.Explain = "in other words"
+	if explained.Hash() != Standard().Hash() {
+		t.Error("words for people change the hash")
+	}
+	other := Standard()
+	other.Steps[1].Share *= 2
+	if other.Hash() == Standard().Hash() {
+		t.Error("another taper has the same hash")
+	}
+}
+
+func TestParseRefuses(t *testing.T) {
+	head := "name = \"own\"\n[[step]]\n"
+	for text, want := range map[string]string{
+		"name = 3":                                   "line 1: ",
+		"name = \"own\"\nnane = 1":                   `line 2: unknown key "nane"`,
+		head + "do = \"mean\"\nwindow = \"all\"":     `line 2: step 1 (mean): window: unknown word "all"; known: whole, pre-event`,
+		head + "do = \"bake\"":                       "line 2: step 1 (bake): do: unknown step; known: mean, trend,",
+		head + "do = \"trend\"\ndegree = 3":          "line 2: step 1 (trend): degree: 3 is outside 1 to 2",
+		head + "do = \"trend\"\ndegree = 1\nshare=1": "line 2: step 1 (trend): share: not a field of this step; it takes degree",
+		head + "do = \"taper\"\nshare = 0.05\n[[ step ]]\ndo = \"taper\"\nshare = nan":                 "line 5: step 2 (taper): share: NaN is outside",
+		head + "do = \"high-pass\"\norder = 4":                                                         "line 2: step 1 (high-pass): corner_hz, by_noise: one of both is needed",
+		head + "do = \"high-pass\"\norder = 9\ncorner_hz = 1":                                          "line 2: step 1 (high-pass): order: 9 is outside 1 to 8",
+		head + "do = \"low-pass\"\norder = 4\n[step.by_noise]\nratio = 3\nleast_hz = 20\nmost_hz = 10": "line 2: step 1 (low-pass): by_noise.most_hz: 10 is outside 20 to 1000",
+		head + "do = \"trim\"\nfrom_s = 5\nto_s = 4":                                                   "line 2: step 1 (trim): to_s: 4 s is not after from_s",
+		"name = \"Own recipe\"":                "name: ",
+		"name = \"standard\"":                  `name: "standard" is a recipe that is built in`,
+		"name = \"own\"\nstates = [\"fresh\"]": `states: unknown state of processing "fresh"; known: raw,`,
+		"name = \"own\"\n[[step]":              "line 2: ",
+		strings.Repeat("#", 2<<20):             "a recipe of more than",
+	} {
+		if _, err := Parse([]byte(text)); err == nil || !strings.HasPrefix(err.Error(), want) {
+			t.Errorf("%.60q: %v, want %s", text, err, want)
+		}
+	}
+}
+
+func FuzzParse(f *testing.F) {
+	f.Add(ownRecipe)
+	f.Fuzz(func(t *testing.T, text string) {
+		r, err := Parse([]byte(text))
+		if err != nil {
+			return
+		}
+		var back Recipe
+		if err := json.Unmarshal([]byte(r.Canonical()), &back); err != nil || back.Canonical() != r.Canonical() || back.Validate() != nil {
+			t.Fatalf("%q gives %s, which reads as %s: %v", text, r.Canonical(), fmt.Sprint(back), err)
+		}
+	})
+}

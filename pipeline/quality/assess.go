@@ -1,0 +1,214 @@
+package quality
+
+import (
+	"fmt"
+	"math"
+
+	"swaybook/pipeline/signal"
+)
+
+// Flag is one thing that can be wrong with a component.
+type Flag string
+
+// The flags that samples alone can raise.
+const (
+	FlagOffset        Flag = "offset"         // the mean is not 0
+	FlagBaselineStep  Flag = "baseline_step"  // the level after the motion is not that before it
+	FlagDrift         Flag = "drift"          // velocity or displacement does not come to rest
+	FlagNoPreEvent    Flag = "no_pre_event"   // too little before the arrival to tell noise by
+	FlagLateStart     Flag = "late_start"     // begins in the strong motion
+	FlagEarlyEnd      Flag = "early_end"      // ends in it
+	FlagSeveralEvents Flag = "several_events" // strong motion twice, with rest between
+	FlagLowSignal     Flag = "low_signal"     // does not stand out of the noise
+)
+
+// Finding is a flag with what raised it.
+type Finding struct {
+	Flag  Flag
+	Value float64 // what was measured
+	Limit float64 // what it is beyond
+	// Words is a sentence for people.
+	Words string
+}
+
+// The limits. Shares of peaks, times in s.
+const (
+	offsetShare = 0.01 // of PGA
+	stepShare   = 0.01 // of PGA
+	levelErrors = 5    // how many standard errors a level must be off, besides
+	restShare   = 0.1  // of PGV and PGD, at the last sample
+	preEventS   = 2.0
+	windowS     = 1.0  // of the root mean squares that follow
+	startShare  = 0.3  // of the greatest, in the first second
+	endShare    = 0.2  // of the greatest, in the last second
+	restS       = 5.0  // between two events
+	quietShare  = 0.05 // of the greatest, at rest
+	againShare  = 0.3  // of the greatest, of another event
+	leastSignal = 10.0 // PGA over the standard deviation of the noise
+)
+
+// Assess returns what is found in acceleration in m/s², stepS apart in s, whose motion
+// arrives at the sample onset, 0 where it begins within it. The findings are in the
+// order of the flags above.
+func Assess(acceleration []float64, stepS float64, onset int) []Finding {
+	a := &assessment{x: acceleration, stepS: stepS, onset: onset}
+	if len(acceleration) == 0 {
+		return nil
+	}
+	for _, v := range acceleration {
+		a.peak = max(a.peak, math.Abs(v))
+	}
+	a.levels()
+	a.rest()
+	a.extent()
+	return a.found
+}
+
+type assessment struct {
+	x     []float64
+	stepS float64
+	onset int
+	peak  float64
+	found []Finding
+}
+
+func (a *assessment) add(flag Flag, value, limit float64, words string, args ...any) {
+	a.found = append(a.found, Finding{flag, value, limit, fmt.Sprintf(words, args...)})
+}
+
+// level is a mean with its standard error, of samples that may hang together: the
+// variance is that of means of windows.
+type level struct{ mean, deviation float64 }
+
+// levelOf takes the mean of means over windows of windowS, and their deviation over the
+// root of their number.
+func levelOf(x []float64, stepS float64) level {
+	n := max(1, int(math.Round(windowS/stepS)))
+	var means []float64
+	for len(x) >= n {
+		means = append(means, signal.Mean(x[:n]))
+		x = x[n:]
+	}
+	if len(means) < 2 {
+		return level{math.NaN(), math.NaN()}
+	}
+	m, sum := signal.Mean(means), 0.0
+	for _, v := range means {
+		sum += float64((v - m) * (v - m))
+	}
+	k := float64(len(means))
+	return level{m, math.Sqrt(sum / (k - 1) / k)}
+}
+
+// levels compares the mean with 0, and that of the last tenth with that before the
+// arrival, or of the first tenth where there is none.
+func (a *assessment) levels() {
+	n := len(a.x)
+	if l := levelOf(a.x, a.stepS); math.Abs(l.mean) > max(offsetShare*a.peak, levelErrors*l.deviation) {
+		a.add(FlagOffset, math.Abs(l.mean)/a.peak, offsetShare, "the mean is %.2g of PGA", math.Abs(l.mean)/a.peak)
+	}
+	first := a.x[:n/10]
+	if float64(a.onset)*a.stepS >= preEventS {
+		first = a.x[:a.onset]
+	}
+	before, after := levelOf(first, a.stepS), levelOf(a.x[n-n/10:], a.stepS)
+	step := math.Abs(after.mean - before.mean)
+	if step > max(stepShare*a.peak, levelErrors*math.Hypot(before.deviation, after.deviation)) {
+		a.add(FlagBaselineStep, step/a.peak, stepShare, "the level changes by %.2g of PGA from beginning to end", step/a.peak)
+	}
+}
+
+// rest looks whether velocity and displacement, integrated from rest, come back to it.
+func (a *assessment) rest() {
+	x := append([]float64(nil), a.x...)
+	if float64(a.onset)*a.stepS >= preEventS {
+		signal.Subtract(x, signal.Mean(x[:a.onset]))
+	}
+	v := signal.Integrate(x, x, a.stepS)
+	share, what := lastShare(v), "velocity"
+	if d := lastShare(signal.Integrate(v, v, a.stepS)); d > share {
+		share, what = d, "displacement"
+	}
+	if share > restShare {
+		a.add(FlagDrift, share, restShare, "the %s ends at %.2g of its peak", what, share)
+	}
+}
+
+func lastShare(x []float64) float64 {
+	top := 0.0
+	for _, v := range x {
+		top = max(top, math.Abs(v))
+	}
+	if top == 0 {
+		return 0
+	}
+	return math.Abs(x[len(x)-1]) / top
+}
+
+// extent looks at where the motion begins, ends and comes back, by root mean squares of
+// windows about the mean.
+func (a *assessment) extent() {
+	quietS := float64(a.onset) * a.stepS
+	if quietS < preEventS {
+		a.add(FlagNoPreEvent, quietS, preEventS, "%.2g s before the arrival", quietS)
+	}
+	rms := a.windows()
+	if len(rms) < 3 {
+		return
+	}
+	top := 0.0
+	for _, v := range rms {
+		top = max(top, v)
+	}
+	if s := rms[0] / top; s > startShare {
+		a.add(FlagLateStart, s, startShare, "the first second has %.2g of the strongest second's root mean square", s)
+	}
+	if e := rms[len(rms)-1] / top; e > endShare {
+		a.add(FlagEarlyEnd, e, endShare, "the last second has %.2g of the strongest second's root mean square", e)
+	}
+	if at, ok := again(rms, top); ok {
+		a.add(FlagSeveralEvents, float64(at)*windowS, restS, "strong motion again %d s from the first sample, after rest", at)
+	}
+	if quietS >= preEventS {
+		quiet := a.x[:a.onset]
+		m, sum := signal.Mean(quiet), 0.0
+		for _, v := range quiet {
+			sum += float64((v - m) * (v - m))
+		}
+		if s := a.peak / math.Sqrt(sum/float64(len(quiet))); s < leastSignal {
+			a.add(FlagLowSignal, s, leastSignal, "PGA is %.2g times the noise before the arrival", s)
+		}
+	}
+}
+
+// windows are the root mean squares, second by second, of the samples about their mean.
+func (a *assessment) windows() []float64 {
+	n := max(1, int(math.Round(windowS/a.stepS)))
+	mean := signal.Mean(a.x)
+	var out []float64
+	for x := a.x; len(x) >= n; x = x[n:] {
+		sum := 0.0
+		for _, v := range x[:n] {
+			sum += float64((v - mean) * (v - mean))
+		}
+		out = append(out, math.Sqrt(sum/float64(n)))
+	}
+	return out
+}
+
+// again returns the window in which strong motion comes back after restS of rest.
+func again(rms []float64, top float64) (at int, ok bool) {
+	strong, quiet := false, 0
+	for i, v := range rms {
+		switch {
+		case v >= againShare*top:
+			if strong && float64(quiet)*windowS >= restS {
+				return i, true
+			}
+			strong, quiet = true, 0
+		case v <= quietShare*top:
+			quiet++
+		}
+	}
+	return 0, false
+}
