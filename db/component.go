@@ -61,6 +61,13 @@ func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, genera
 			return fmt.Errorf("store spectrum: %w", err)
 		}
 	}
+	if c := computed.conditioning; c != nil {
+		err := t.exec(ctx, `INSERT INTO conditioning (generation_id, record_id, role, step_s, samples, lead_s, low_cut_hz, high_cut_hz)
+			VALUES (?, ?, ?, ?, ?, ?, ?, ?)`, generation, recordID, role, c.StepS, c.Samples, c.LeadS, c.LowCutHz, c.HighCutHz)
+		if err != nil {
+			return fmt.Errorf("store conditioning: %w", err)
+		}
+	}
 	for _, name := range slices.Sorted(maps.Keys(computed.measures)) {
 		err := t.exec(ctx, `INSERT INTO measure (generation_id, record_id, role, name, value) VALUES (?, ?, ?, ?, ?)`,
 			generation, recordID, role, name, computed.measures[name])
@@ -193,7 +200,7 @@ func (t *Tx) SetRoles(ctx context.Context, recordID int64, renamed map[string]st
 	// Two steps through names that nothing else has, since roles are unique in a
 	// record at every moment.
 	const between = "was "
-	for _, table := range []string{"component", "spectrum", "measure"} {
+	for _, table := range []string{"component", "spectrum", "measure", "conditioning"} {
 		query := `UPDATE ` + table + ` SET role = ? WHERE record_id = ? AND role = ?`
 		for old := range renamed {
 			if err := t.exec(ctx, query, between+old, recordID, old); err != nil {

@@ -60,21 +60,59 @@ func (t *Tx) Published(ctx context.Context) (g Generation, ok bool, err error) {
 	return published(ctx, t.tx)
 }
 
-// CreateGeneration makes and publishes the store's first generation.
-func (t *Tx) CreateGeneration(ctx context.Context, recipe Recipe, grid Grid, solver string) (Generation, error) {
-	recipeID, err := t.insert(ctx, `INSERT INTO recipe (hash, name, steps) VALUES (?, ?, ?)`, recipe.hash(), recipe.Name, recipe.Steps)
-	if err != nil {
-		return Generation{}, fmt.Errorf("create recipe: %w", err)
+// PutGeneration returns the generation of a recipe, grid and solver, which it begins
+// where there is none. The store's first is published at once, another when Publish
+// is called.
+func (t *Tx) PutGeneration(ctx context.Context, recipe Recipe, grid Grid, solver string) (Generation, error) {
+	g := Generation{Recipe: recipe, Solver: solver, Grid: grid}
+	recipeID, err := t.idOf(ctx, `SELECT id FROM recipe WHERE hash = ?`, recipe.hash())
+	if err == nil && recipeID == 0 {
+		recipeID, err = t.insert(ctx, `INSERT INTO recipe (hash, name, steps) VALUES (?, ?, ?)`, recipe.hash(), recipe.Name, recipe.Steps)
 	}
-	gridID, err := t.createGrid(ctx, grid)
 	if err != nil {
-		return Generation{}, fmt.Errorf("create grid: %w", err)
+		return g, fmt.Errorf("put recipe: %w", err)
 	}
-	id, err := t.insert(ctx, `INSERT INTO generation (recipe_id, grid_id, solver, state) VALUES (?, ?, ?, 'published')`, recipeID, gridID, solver)
+	gridID, err := t.idOf(ctx, `SELECT id FROM grid WHERE hash = ?`, grid.Hash())
+	if err == nil && gridID == 0 {
+		gridID, err = t.createGrid(ctx, grid)
+	}
 	if err != nil {
-		return Generation{}, fmt.Errorf("create generation: %w", err)
+		return g, fmt.Errorf("put grid: %w", err)
 	}
-	return Generation{ID: id, Recipe: recipe.Name, Solver: solver, Grid: grid}, nil
+	g.ID, err = t.idOf(ctx, `SELECT id FROM generation WHERE recipe_id = ? AND grid_id = ? AND solver = ?`, recipeID, gridID, solver)
+	if err == nil && g.ID == 0 {
+		g.ID, err = t.insert(ctx, `INSERT INTO generation (recipe_id, grid_id, solver, state)
+			SELECT ?, ?, ?, iif(EXISTS (SELECT 1 FROM generation), 'building', 'published')`, recipeID, gridID, solver)
+	}
+	if err != nil {
+		return g, fmt.Errorf("put generation: %w", err)
+	}
+	return g, nil
+}
+
+// idOf returns the id that a query gives, 0 where it gives none.
+func (t *Tx) idOf(ctx context.Context, query string, args ...any) (int64, error) {
+	rows, err := t.tx.QueryContext(ctx, query, args...)
+	if err != nil {
+		return 0, err
+	}
+	ids, err := collect(rows, func(id *int64) []any { return []any{id} })
+	if err != nil || len(ids) == 0 {
+		return 0, err
+	}
+	return ids[0], nil
+}
+
+// Publish makes a generation the one that is asked, instead of the one before.
+func (t *Tx) Publish(ctx context.Context, generationID int64) error {
+	err := t.exec(ctx, `UPDATE generation SET state = 'superseded' WHERE state = 'published' AND id <> ?`, generationID)
+	if err == nil {
+		err = t.exec(ctx, `UPDATE generation SET state = 'published' WHERE id = ? AND state <> 'published'`, generationID)
+	}
+	if err != nil {
+		return fmt.Errorf("publish generation: %w", err)
+	}
+	return nil
 }
 
 func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
@@ -98,7 +136,7 @@ func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
 }
 
 func published(ctx context.Context, q queryer) (g Generation, ok bool, err error) {
-	rows, err := q.QueryContext(ctx, `SELECT g.id, r.name, g.solver, g.grid_id
+	rows, err := q.QueryContext(ctx, `SELECT g.id, r.name, r.steps, g.solver, g.grid_id
 		FROM generation g JOIN recipe r ON r.id = g.recipe_id WHERE g.state = 'published'`)
 	if err != nil {
 		return g, false, err
@@ -107,7 +145,7 @@ func published(ctx context.Context, q queryer) (g Generation, ok bool, err error
 		Generation
 		gridID int64
 	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.ID, &v.Recipe, &v.Solver, &v.gridID} })
+	found, err := collect(rows, func(v *row) []any { return []any{&v.ID, &v.Recipe.Name, &v.Recipe.Steps, &v.Solver, &v.gridID} })
 	if err != nil || len(found) == 0 {
 		return g, false, err
 	}

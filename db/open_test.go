@@ -189,7 +189,7 @@ func TestAnotherSolversStoreIsNotMigrated(t *testing.T) {
 	path := filepath.Join(t.TempDir(), "s.db")
 	s := must(Create(t.Context(), path, testSolver))
 	err := s.Update(t.Context(), func(tx *Tx) error {
-		_, err := tx.CreateGeneration(t.Context(), Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, testSolver)
+		_, err := tx.PutGeneration(t.Context(), Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, testSolver)
 		return err
 	})
 	if err != nil {

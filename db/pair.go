@@ -80,7 +80,11 @@ type StoredMotion struct {
 	role              string
 	samples           int
 	digest            string
-	data              []byte   // nil where there is none
+	data              []byte // nil where there is none
+	stepS             float64
+	state             string
+	lowCutHz          *float64
+	highCutHz         *float64
 	sd                [][]byte // by damping
 	periods, dampings int
 }
@@ -101,13 +105,23 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 	return first, second, nil
 }
 
+// readSeries reads the samples of one component and what goes with them.
+func readSeries(ctx context.Context, q queryer, condition string, args ...any) (m StoredMotion, err error) {
+	err = q.QueryRowContext(ctx, `SELECT c.role, c.samples, coalesce(s.sha256, ''), s.data, c.step_s, c.processing, c.low_cut_hz, c.high_cut_hz
+		FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE `+condition, args...).
+		Scan(&m.role, &m.samples, &m.digest, &m.data, &m.stepS, &m.state, &m.lowCutHz, &m.highCutHz)
+	if err != nil {
+		return m, fmt.Errorf("read samples: %w", err)
+	}
+	return m, nil
+}
+
 func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64) (StoredMotion, error) {
-	m := StoredMotion{periods: len(g.Grid.PeriodsS), dampings: len(g.Grid.Dampings)}
-	err := tx.QueryRowContext(ctx, `SELECT c.role, c.samples, coalesce(s.sha256, ''), s.data FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE c.id = ?`, componentID).
-		Scan(&m.role, &m.samples, &m.digest, &m.data)
+	m, err := readSeries(ctx, tx, `c.id = ?`, componentID)
 	if err != nil {
 		return m, err
 	}
+	m.periods, m.dampings = len(g.Grid.PeriodsS), len(g.Grid.Dampings)
 	// The plus keeps the generation, which nearly every spectrum has, from being
 	// taken for the better index.
 	rows, err := tx.QueryContext(ctx, `SELECT s.sd_m FROM component c
@@ -120,28 +134,31 @@ func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64
 	return m, err
 }
 
-// Decode returns the samples in m/s², checked against their digest, and the SD in
-// m, the grid's dampings outside and its periods inside: the doubles that were
-// stored. The error wraps ErrDamaged and says what is.
-func (m StoredMotion) Decode() (samples, sd []float64, err error) {
-	if samples, sd, err = m.decode(); err != nil {
-		return nil, nil, fmt.Errorf("%w: %s: %w", ErrDamaged, m.role, err)
+// DecodeMotion returns the motion as it was delivered, its samples checked against their
+// digest. The error wraps ErrDamaged and says what is.
+func (m StoredMotion) DecodeMotion() (Motion, error) {
+	samples, err := DecodeSamples(m.data, m.samples, m.digest)
+	if err != nil {
+		return Motion{}, m.damaged(err)
 	}
-	return samples, sd, nil
+	return Motion{Acceleration: samples, StepS: m.stepS, State: m.state, LowCutHz: orNaN(m.lowCutHz), HighCutHz: orNaN(m.highCutHz)}, nil
 }
 
-func (m StoredMotion) decode() (samples, sd []float64, err error) {
-	if samples, err = DecodeSamples(m.data, m.samples, m.digest); err != nil {
-		return nil, nil, err
-	}
+// DecodeSD returns the SD in m, the grid's dampings outside and its periods inside: the
+// doubles that were stored. The error wraps ErrDamaged and says what is.
+func (m StoredMotion) DecodeSD() ([]float64, error) {
 	if len(m.sd) != m.dampings {
-		return nil, nil, fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings)
+		return nil, m.damaged(fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings))
 	}
-	sd = make([]float64, len(m.sd)*m.periods)
+	sd := make([]float64, len(m.sd)*m.periods)
 	for i, text := range m.sd {
 		if err := Ordinates(text).Decode(sd[i*m.periods : (i+1)*m.periods]); err != nil {
-			return nil, nil, err
+			return nil, m.damaged(err)
 		}
 	}
-	return samples, sd, nil
+	return sd, nil
+}
+
+func (m StoredMotion) damaged(err error) error {
+	return fmt.Errorf("%w: %s: %w", ErrDamaged, m.role, err)
 }

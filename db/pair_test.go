@@ -44,7 +44,7 @@ func putRotated(t *testing.T, s *Store, g Generation, recordID int64, base float
 		sd = append(sd, []float64{base, base + 1, base + 2})
 	}
 	update(t, s, func(ctx context.Context, tx *Tx) error {
-		computed := NewSpectra(sd, map[string]float64{MeasurePGA: base})
+		computed := NewSpectra(sd, map[string]float64{MeasurePGA: base}, nil)
 		return tx.AddRotated(ctx, recordID, g.ID, computed, computed)
 	})
 }
@@ -146,10 +146,12 @@ func TestReadPairRestoresTheDoubles(t *testing.T) {
 		t.Fatal(err)
 	}
 	for i, m := range []StoredMotion{first, second} {
-		samples, sd, err := m.Decode()
-		if err != nil {
+		delivered, errMotion := m.DecodeMotion()
+		sd, err := m.DecodeSD()
+		if err := errors.Join(err, errMotion); err != nil {
 			t.Fatal(err)
 		}
+		samples := delivered.Acceleration
 		base := []float64{1.1, 2}[i]
 		want := []float64{base, base + 1, base + 2, base + 10, base + 11, base + 12}
 		if !slices.Equal(sd, want) || !slices.Equal(samples, motion(100, 4, 1)) {
@@ -172,9 +174,16 @@ func TestDecodeNamesWhatIsDamaged(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	var lost, cut int
 	for _, m := range []StoredMotion{first, second} {
-		if samples, sd, err := m.Decode(); err == nil || samples != nil || sd != nil {
-			t.Errorf("Decode = %v, %v, %v of what is damaged", samples, sd, err)
+		if delivered, err := m.DecodeMotion(); errors.Is(err, ErrDamaged) && delivered.Acceleration == nil {
+			lost++
 		}
+		if sd, err := m.DecodeSD(); errors.Is(err, ErrDamaged) && sd == nil {
+			cut++
+		}
+	}
+	if lost != 1 || cut != 1 {
+		t.Errorf("%d components without samples, %d without SD, want 1 and 1", lost, cut)
 	}
 }

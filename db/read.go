@@ -152,26 +152,14 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 	return out, nil
 }
 
-// Samples returns a component's acceleration in m/s², checked against its
-// digest. The error wraps ErrDamaged where that cannot be had.
-func (s *Snapshot) Samples(ctx context.Context, recordID int64, role string) ([]float64, error) {
-	return samples(ctx, s.tx, recordID, role)
-}
-
-func samples(ctx context.Context, q queryer, recordID int64, role string) ([]float64, error) {
-	var n int
-	var digest string
-	var data []byte
-	err := q.QueryRowContext(ctx, `SELECT c.samples, coalesce(s.sha256, ''), s.data FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE c.record_id = ? AND c.role = ?`, recordID, role).
-		Scan(&n, &digest, &data)
+// Motion returns a component's motion, its samples checked against their digest. The
+// error wraps ErrDamaged where these cannot be had.
+func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, error) {
+	m, err := readSeries(ctx, s.tx, `c.record_id = ? AND c.role = ?`, recordID, role)
 	if err != nil {
-		return nil, fmt.Errorf("read samples: %w", err)
+		return Motion{}, err
 	}
-	decoded, err := DecodeSamples(data, n, digest)
-	if err != nil {
-		return nil, fmt.Errorf("%w: %s: %w", ErrDamaged, role, err)
-	}
-	return decoded, nil
+	return m.DecodeMotion()
 }
 
 // Rejections returns what could not be stored, ordered by path and line.

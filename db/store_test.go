@@ -69,7 +69,7 @@ func add(ctx context.Context, tx *Tx, g Generation, code, role string, base floa
 	c := Component{Role: role, Axis: "horizontal", Label: role, StepS: 0.01, Samples: len(samples), Unit: "m/s2", Processing: "corrected",
 		AzimuthDeg: number(30), Start: startsAt, SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
 	return tx.AddComponent(ctx, record.ID, c, data, digest, g.ID,
-		NewSpectra(computed, map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}))
+		NewSpectra(computed, map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}, nil))
 }
 
 func filledStore(t *testing.T) (*Store, Generation) {
@@ -80,7 +80,7 @@ func filledStore(t *testing.T) (*Store, Generation) {
 		if _, err = tx.StartRun(ctx, "ingest", "test", time.Now()); err != nil {
 			return err
 		}
-		g, err = tx.CreateGeneration(ctx, Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, testSolver)
+		g, err = tx.PutGeneration(ctx, Recipe{Name: "as-delivered", Steps: "[]"}, testGrid, testSolver)
 		return err
 	})
 	return s, g
@@ -134,8 +134,8 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		if *c.Record.Event.Magnitude != 6.1 || *c.Record.Station.Vs30MPS != 420 || *c.Record.Distances.BestKM != 12.5 || c.PGA != 0.5 || c.PGD != 1.5 {
 			t.Errorf("component = %+v", c)
 		}
-		if samples, err := v.Samples(t.Context(), c.RecordID, c.Role); err != nil || len(samples) != 100 {
-			t.Errorf("samples: %d, %v", len(samples), err)
+		if m, err := v.Motion(t.Context(), c.RecordID, c.Role); err != nil || len(m.Acceleration) != 100 {
+			t.Errorf("samples: %d, %v", len(m.Acceleration), err)
 		}
 		for _, periods := range []Span{{0, 3}, {1, 2}, {2, 3}, {0, 2}} {
 			var ids []int64

@@ -140,22 +140,41 @@ type Grid struct {
 // Generation is what was computed under one recipe, grid and solver.
 type Generation struct {
 	ID     int64
-	Recipe string
+	Recipe Recipe
 	Solver string
 	Grid   Grid
 }
 
+// Motion is a component's samples with what conditioning goes by.
+type Motion struct {
+	Acceleration        []float64 // m/s²
+	StepS               float64
+	State               string  // of processing
+	LowCutHz, HighCutHz float64 // corners that the header or the catalogue states, NaN for none
+}
+
+// Conditioning is what a recipe did to a component before its spectrum was computed.
+type Conditioning struct {
+	StepS     float64
+	Samples   int
+	LeadS     float64  // of its first sample over the component's
+	LowCutHz  *float64 // corners of the filters that the recipe applied
+	HighCutHz *float64
+}
+
 // Spectra is what is computed of one component, in the form in which it is stored.
 type Spectra struct {
-	sd       [][]byte // text by damping
-	measures map[string]float64
+	sd           [][]byte // text by damping
+	measures     map[string]float64
+	conditioning *Conditioning
 }
 
 // NewSpectra takes SD in m for every damping of the grid (outer) at every period
-// (inner), and the measures by name. To write the numbers takes longer than to
-// store them, and is not left to the transaction that does that.
-func NewSpectra(sd [][]float64, measures map[string]float64) Spectra {
-	s := Spectra{measures: measures}
+// (inner), the measures by name, and what was done to the component before, nil for
+// nothing. To write the numbers takes longer than to store them, and is not left to the
+// transaction that does that.
+func NewSpectra(sd [][]float64, measures map[string]float64, conditioning *Conditioning) Spectra {
+	s := Spectra{measures: measures, conditioning: conditioning}
 	for _, values := range sd {
 		s.sd = append(s.sd, encodeOrdinates(make([]byte, 0, OrdinateWidth*len(values)), values))
 	}

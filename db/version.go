@@ -159,9 +159,13 @@ func (t *Tx) PutLikeness(ctx context.Context, l Likeness) error {
 	return nil
 }
 
-// SamplesOf returns a component's acceleration in m/s², as Snapshot.Samples does.
-func (t *Tx) SamplesOf(ctx context.Context, v *Version) ([]float64, error) {
-	return samples(ctx, t.tx, v.RecordID, v.Role)
+// MotionOf returns a component's motion, as Snapshot.Motion does.
+func (t *Tx) MotionOf(ctx context.Context, v *Version) (Motion, error) {
+	m, err := readSeries(ctx, t.tx, `c.id = ?`, v.ComponentID)
+	if err != nil {
+		return Motion{}, err
+	}
+	return m.DecodeMotion()
 }
 
 // SetMotion stores the least id of the components that hold the same motion, 0 where

@@ -66,7 +66,7 @@ func (c *comparison) motion(ctx context.Context, v, with *db.Version) (*likeness
 	if h, ok := c.held.of[v.ComponentID]; ok {
 		return h.motion, nil
 	}
-	samples, err := c.tx.SamplesOf(ctx, v)
+	motion, err := c.tx.MotionOf(ctx, v)
 	if errors.Is(err, db.ErrDamaged) {
 		c.held.put(v.ComponentID, with.ComponentID, heldMotion{})
 		return nil, nil
@@ -74,11 +74,11 @@ func (c *comparison) motion(ctx context.Context, v, with *db.Version) (*likeness
 	if err != nil {
 		return nil, err
 	}
-	m, err := likeness.NewMotion(samples, v.StepS)
+	m, err := likeness.NewMotion(motion.Acceleration, v.StepS)
 	if err != nil {
 		return nil, err
 	}
-	c.held.put(v.ComponentID, with.ComponentID, heldMotion{m, len(samples)})
+	c.held.put(v.ComponentID, with.ComponentID, heldMotion{m, len(motion.Acceleration)})
 	return m, nil
 }
 

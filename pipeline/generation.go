@@ -5,17 +5,16 @@ import (
 	"fmt"
 
 	"swaybook/db"
+	"swaybook/pipeline/condition"
 	"swaybook/pipeline/spectrum"
 )
 
-// asDelivered is the recipe that changes nothing.
-var asDelivered = db.Recipe{Name: "as-delivered", Steps: "[]"}
-
-// settleGeneration returns the store's generation, which the first run makes
-// on the grid asked for. A later run that asks for another grid is refused, and
-// so is a store that another version of the solver computed: its spectra would
-// not be comparable with new ones.
-func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid) (db.Generation, error) {
+// settleGeneration returns the generation of the run: that of the store's grid and of
+// the recipe asked for, or of the published one where none is. A first run makes it on
+// the grid asked for. A later run that asks for another grid is refused, and so is a
+// store that another version of the solver computed: its spectra would not be comparable
+// with new ones.
+func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid, recipe *condition.Recipe) (db.Generation, error) {
 	g, ok, err := tx.Published(ctx)
 	if err != nil {
 		return g, err
@@ -25,7 +24,11 @@ func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid) (db.Generat
 		if err := (spectrum.Grid{PeriodsS: grid.PeriodsS, Dampings: grid.Dampings}).Validate(); err != nil {
 			return g, err
 		}
-		return tx.CreateGeneration(ctx, asDelivered, grid, spectrum.Version)
+		if recipe == nil {
+			standard := condition.Standard()
+			recipe = &standard
+		}
+		return tx.PutGeneration(ctx, storedRecipe(recipe), grid, spectrum.Version)
 	}
 	if err := g.CheckSolver(spectrum.Version); err != nil {
 		return g, err
@@ -35,7 +38,14 @@ func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid) (db.Generat
 			"query other periods and dampings (they are computed from the stored samples), or make another store with --store",
 			db.ErrOtherGeneration, describe(g.Grid))
 	}
-	return g, nil
+	if recipe == nil {
+		return g, nil
+	}
+	return tx.PutGeneration(ctx, storedRecipe(recipe), g.Grid, spectrum.Version)
+}
+
+func storedRecipe(r *condition.Recipe) db.Recipe {
+	return db.Recipe{Name: r.Name, Steps: r.Canonical()}
 }
 
 func defaultGrid() db.Grid {

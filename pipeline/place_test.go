@@ -116,7 +116,7 @@ func placeAll(t *testing.T, seats []seat) {
 		res := result{
 			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, rel: s.path, stem: stemOf(s.path), outcome: Stored,
 			channels: []solved{{channel: s.channel, samples: 1, digest: "-", data: []byte{0},
-				spectra: db.NewSpectra(nil, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1})}},
+				spectra: db.NewSpectra(nil, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1}, nil)}},
 		}
 		w.opts.Progress = func(p Progress) {
 			for _, c := range p.File.Causes {

@@ -5,10 +5,11 @@ import (
 	"crypto/sha256"
 	"encoding/hex"
 	"errors"
+	"math"
 
 	"swaybook/db"
 	"swaybook/ingest"
-	"swaybook/pipeline/spectrum"
+	"swaybook/pipeline/condition"
 )
 
 // Outcome is what became of a file.
@@ -56,11 +57,11 @@ type reader struct {
 	store     Store
 	catalogue *ingest.Catalogue
 	hints     ingest.Hints
-	solvers   solvers
+	computer  computer
 }
 
-func newReader(store Store, opts Options, grid db.Grid) *reader {
-	return &reader{store: store, catalogue: opts.Catalogue, hints: opts.Hints, solvers: newSolvers(grid)}
+func newReader(store Store, opts Options, computer computer) *reader {
+	return &reader{store: store, catalogue: opts.Catalogue, hints: opts.Hints, computer: computer}
 }
 
 // process reads, recognises, describes and solves one file. What is wrong with
@@ -173,15 +174,22 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 
 // solve completes s by what is computed of the channel.
 func (r *reader) solve(s *solved, c ingest.Channel) error {
-	solver, err := r.solvers.Get(c.StepS)
+	spectra, err := r.computer.compute(condition.Component{
+		Acceleration: c.Acceleration, StepS: c.StepS, State: string(c.Processing), LowCutHz: numberOrNaN(c.LowCutHz), HighCutHz: numberOrNaN(c.HighCutHz),
+	})
 	if err != nil {
 		return err
 	}
-	var peaks spectrum.GroundPeaks
-	peaks.PGA, peaks.PGV, peaks.PGD = spectrum.Peaks(c.StepS, c.Acceleration)
-	s.channel, s.samples, s.spectra = withoutSamples(c), len(c.Acceleration), r.solvers.spectra(solver.SD(nil, c.Acceleration), peaks)
+	s.channel, s.samples, s.spectra = withoutSamples(c), len(c.Acceleration), spectra
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
 	return nil
+}
+
+func numberOrNaN(n ingest.Number) float64 {
+	if !n.Known {
+		return math.NaN()
+	}
+	return n.Value
 }
 
 // catalogueAccount is what the catalogue says of a channel.

@@ -189,7 +189,7 @@ func TestEqualCodesOfTwoQuakes(t *testing.T) {
 	}
 	for n, i := range []int{0, 1, 0, 1} {
 		err := store.Update(t.Context(), func(tx *db.Tx) error {
-			g, err := settleGeneration(t.Context(), tx, testGrid)
+			g, err := settleGeneration(t.Context(), tx, testGrid, nil)
 			s := newSettler(tx, map[db.Statement]string{}, nil)
 			c := ingest.Channel{Event: quakes[i].Event}
 			err = errors.Join(err, s.distinguish(t.Context(), &c, &quakes[i]))
@@ -243,7 +243,7 @@ func TestEqualCodesOfQuakeMLAndOthers(t *testing.T) {
 			at := 0
 			for part := range slices.Chunk(order, batch) {
 				err := store.Update(t.Context(), func(tx *db.Tx) error {
-					g, err := settleGeneration(t.Context(), tx, testGrid)
+					g, err := settleGeneration(t.Context(), tx, testGrid, nil)
 					s := newSettler(tx, map[db.Statement]string{}, nil)
 					for _, by := range part {
 						err = errors.Join(err, putOf(t.Context(), tx, s, g, at, by, events[test.where], &quake))

@@ -9,6 +9,7 @@ import (
 	"strings"
 
 	"swaybook/db"
+	"swaybook/pipeline/condition"
 	"swaybook/pipeline/spectrum"
 )
 
@@ -87,7 +88,7 @@ func (r *rotator) process(ctx context.Context, p db.Pair) (rotation, error) {
 	if err != nil {
 		return rot, err
 	}
-	if rot.median, rot.maximum, err = rotatePair(r.run.reader.solvers, p.First.StepS, deg, first, second); err != nil {
+	if rot.median, rot.maximum, err = r.run.reader.computer.rotate(deg, first, second); err != nil {
 		return rot.failed(err), ctx.Err()
 	}
 	return rot, ctx.Err()
@@ -110,21 +111,23 @@ func (rot rotation) failed(err error) rotation {
 	return rot
 }
 
-// rotatePair computes the rotated spectra and measures of a pair of equal steps.
-func rotatePair(solvers solvers, stepS, betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
-	a, sdA, err := first.Decode()
+// rotate computes the rotated spectra and measures of a pair of equal steps, each
+// component conditioned as for its own.
+func (c *computer) rotate(betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
+	a, sdA, err := c.solved(first)
 	if err != nil {
 		return median, maximum, err
 	}
-	b, sdB, err := second.Decode()
+	b, sdB, err := c.solved(second)
 	if err != nil {
 		return median, maximum, err
 	}
-	solver, err := solvers.Get(stepS)
+	stepS := a.StepS
+	solver, err := c.solvers.Get(stepS)
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}
-	pair := spectrum.NewPair(a, b, betweenDeg)
+	pair := spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b), betweenDeg)
 	if pair.ChangedA {
 		sdA = solver.SD(nil, pair.A)
 	}
@@ -136,7 +139,19 @@ func rotatePair(solvers solvers, stepS, betweenDeg float64, first, second db.Sto
 	if !areFinite(append(slices.Clone(sd100), peaks100.PGA, peaks100.PGV, peaks100.PGD)) {
 		return median, maximum, errors.New("the motion is beyond the range of numbers")
 	}
-	return solvers.spectra(sd50, peaks50), solvers.spectra(sd100, peaks100), nil
+	return c.solvers.spectra(sd50, peaks50, nil), c.solvers.spectra(sd100, peaks100, nil), nil
+}
+
+// solved is a stored component, conditioned, with its stored SD.
+func (c *computer) solved(stored db.StoredMotion) (motion condition.Conditioned, sd []float64, err error) {
+	delivered, err := stored.DecodeMotion()
+	if err == nil {
+		sd, err = stored.DecodeSD()
+	}
+	if err == nil {
+		motion, err = c.recipe.Apply(condition.Component(delivered))
+	}
+	return motion, sd, err
 }
 
 // areFinite reports whether all are numbers. Where the maxima over all directions

@@ -131,7 +131,7 @@ func compareRotated(t *testing.T, store *db.Store, first, second []float64, betw
 	if err != nil {
 		t.Fatal(err)
 	}
-	p := spectrum.NewPair(first, second, between)
+	p := spectrum.NewPair(first, second, 0, between)
 	sd50, sd100 := solver.RotD(p.A, p.B, solver.SD(nil, p.A), solver.SD(nil, p.B))
 	peaks50, peaks100 := p.Peaks(0.01)
 	for role, want := range map[string][]float64{db.RoleRotD50: sd50, db.RoleRotD100: sd100} {

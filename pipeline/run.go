@@ -8,11 +8,14 @@ import (
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/pipeline/condition"
 )
 
 // Store is what a run needs of the store; *db.Store is one.
 type Store interface {
 	Held(ctx context.Context, sha256 string) (path string, ok bool, err error)
+	Unsolved(ctx context.Context, generationID int64) ([]db.Unsolved, error)
+	ReadUnsolved(ctx context.Context, u db.Unsolved) (db.StoredMotion, error)
 	Unrotated(ctx context.Context, generationID int64) ([]db.Pair, error)
 	ReadPair(ctx context.Context, g db.Generation, p db.Pair) (first, second db.StoredMotion, err error)
 	Update(ctx context.Context, f func(*db.Tx) error) error
@@ -33,7 +36,11 @@ type Options struct {
 	Hints ingest.Hints
 	// Grid is the grid asked for. An empty list asks for the store's own, or
 	// for the default in a new store.
-	Grid    db.Grid
+	Grid db.Grid
+	// Recipe conditions the components; nil asks for the store's own, or for
+	// condition.Standard in a new store. Another than the store's begins a generation of
+	// its own, which is published when it is complete.
+	Recipe  *condition.Recipe
 	Workers int       // files in work at the same time; default GOMAXPROCS
 	Program string    // name and version, kept with the run
 	Started time.Time // when the run began
@@ -42,9 +49,12 @@ type Options struct {
 	// Progress is called by the writer after each file, in path order; may be
 	// nil.
 	Progress func(Progress)
-	// SkipRotation leaves the second stage to a later run.
+	// SkipRotation leaves the last stage to a later run.
 	SkipRotation bool
-	// Rotated is called by the writer after each record of the second stage, in
+	// Solved is called by the writer after each held component of the second stage; may
+	// be nil.
+	Solved func(done, total int)
+	// Rotated is called by the writer after each record of the last stage, in
 	// the order in which they were stored; may be nil.
 	Rotated func(Rotated)
 	// Doubted is called at the end of the run, in the order of the files, for what
@@ -60,8 +70,9 @@ type Progress struct {
 	File  FileReport
 }
 
-// Run ingests the files under opts.Paths into the store, and then rotates the
-// horizontals of every record that has two and lacks that. The summary tells what
+// Run ingests the files under opts.Paths into the store, computes the spectra of held
+// components that the generation lacks, and then rotates the horizontals of every record
+// that has two and lacks that. The summary tells what
 // happened to every file and record; it is valid beside an error too, for what had
 // been committed by then. A cancelled context ends the run after the batch in
 // hand; the error is then the context's.
@@ -80,7 +91,13 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	w := newWriter(store, run, opts, src)
 	err = w.files(ctx)
 	if err == nil {
+		err = w.complete(ctx)
+	}
+	if err == nil {
 		err = w.rotate(ctx)
+	}
+	if err == nil {
+		err = store.Update(ctx, func(tx *db.Tx) error { return tx.Publish(ctx, run.generation.ID) })
 	}
 	return w.finish(ctx, err)
 }
@@ -94,6 +111,9 @@ func withDefaults(opts Options) Options {
 	}
 	if opts.Progress == nil {
 		opts.Progress = func(Progress) {}
+	}
+	if opts.Solved == nil {
+		opts.Solved = func(int, int) {}
 	}
 	if opts.Rotated == nil {
 		opts.Rotated = func(Rotated) {}
@@ -116,7 +136,7 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	var s state
 	err := store.Update(ctx, func(tx *db.Tx) error {
 		var err error
-		if s.generation, err = settleGeneration(ctx, tx, opts.Grid); err != nil {
+		if s.generation, err = settleGeneration(ctx, tx, opts.Grid, opts.Recipe); err != nil {
 			return err
 		}
 		s.id, err = tx.StartRun(ctx, "ingest", opts.Program, opts.Started)
@@ -125,7 +145,11 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	if err != nil {
 		return state{}, err
 	}
-	s.reader = newReader(store, opts, s.generation.Grid)
+	computer, err := newComputer(s.generation)
+	if err != nil {
+		return state{}, err
+	}
+	s.reader = newReader(store, opts, computer)
 	return s, nil
 }
 

@@ -65,7 +65,7 @@ func settleAll(b *testing.B, files []inventedAccount) (first, last float64) {
 		}
 		part := files[64*n : min(64*(n+1), len(files))]
 		err := store.Update(b.Context(), func(tx *db.Tx) error {
-			g, err := settleGeneration(b.Context(), tx, testGrid)
+			g, err := settleGeneration(b.Context(), tx, testGrid, nil)
 			if err != nil {
 				return err
 			}

@@ -111,7 +111,7 @@ func settled(t *testing.T, accounts []inventedAccount, batch int) (*db.Store, []
 	known := map[db.Statement]string{}
 	for part := range slices.Chunk(accounts, batch) {
 		err := store.Update(t.Context(), func(tx *db.Tx) error {
-			g, err := settleGeneration(t.Context(), tx, testGrid)
+			g, err := settleGeneration(t.Context(), tx, testGrid, nil)
 			s := newSettler(tx, known, nil)
 			for _, a := range part {
 				err = errors.Join(err, s.distinguish(t.Context(), &a.account.channel, nil), a.put(t.Context(), tx, s, g))
@@ -154,7 +154,7 @@ func addComponent(ctx context.Context, tx *db.Tx, key db.RecordKey, path string,
 	sum := fnv.New32a()
 	sum.Write([]byte(path))
 	data, digest := db.EncodeSamples([]float64{0, float64(sum.Sum32())}, 1) // no two alike
-	spectra := db.NewSpectra([][]float64{{1, 1, 1}, {1, 1, 1}}, nil)
+	spectra := db.NewSpectra([][]float64{{1, 1, 1}, {1, 1, 1}}, nil, nil)
 	c := db.Component{Role: db.RoleH1, Axis: "horizontal", StepS: 0.01, Samples: 2, SourceID: source}
 	return tx.AddComponent(ctx, key.ID, c, data, digest, g.ID, spectra)
 }

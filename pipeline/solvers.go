@@ -17,11 +17,11 @@ func newSolvers(grid db.Grid) solvers {
 	return solvers{spectrum.NewSolvers(spectrum.NigamJennings, oscillators), len(grid.PeriodsS)}
 }
 
-// spectra is what a solver's SD and the peaks are in the store.
-func (s solvers) spectra(sd []float64, peaks spectrum.GroundPeaks) db.Spectra {
+// spectra is what a solver's SD, the peaks and the conditioning are in the store.
+func (s solvers) spectra(sd []float64, peaks spectrum.GroundPeaks, conditioning *db.Conditioning) db.Spectra {
 	var byDamping [][]float64
 	for ; len(sd) > 0; sd = sd[s.periods:] {
 		byDamping = append(byDamping, sd[:s.periods])
 	}
-	return db.NewSpectra(byDamping, map[string]float64{db.MeasurePGA: peaks.PGA, db.MeasurePGV: peaks.PGV, db.MeasurePGD: peaks.PGD})
+	return db.NewSpectra(byDamping, map[string]float64{db.MeasurePGA: peaks.PGA, db.MeasurePGV: peaks.PGV, db.MeasurePGD: peaks.PGD}, conditioning)
 }

@@ -39,6 +39,10 @@ type Summary struct {
 	Assumed    int `json:"rotated_at_assumed_right_angle"`
 	NotRotated int `json:"not_rotated"` // records whose horizontals make no pair
 	Damaged    int `json:"damaged"`     // records that are damaged in the store
+	// Recomputed counts held components of which the generation lacked the spectra, and
+	// NotRecomputed those that could not be solved.
+	Recomputed    int `json:"recomputed"`
+	NotRecomputed int `json:"not_recomputed"`
 	// Unrotated counts the pairs left to a later run: all where that was asked for,
 	// those not reached by a run that was stopped while it rotated.
 	Unrotated int `json:"left_to_rotate"`
@@ -65,6 +69,14 @@ func (s *Summary) add(f FileReport) {
 	case Rejected:
 		s.Rejected++
 	}
+}
+
+func (s *Summary) addCompleted(c completed) {
+	if c.err != nil {
+		s.NotRecomputed++
+		return
+	}
+	s.Recomputed++
 }
 
 func (s *Summary) addRotated(r Rotated) {

@@ -6,6 +6,7 @@ import (
 	"fmt"
 
 	"swaybook/db"
+	"swaybook/pipeline/condition"
 	"swaybook/pipeline/spectrum"
 )
 
@@ -49,24 +50,37 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 // solve hands over the SD, one an oscillator, of what the motion is made of: of
 // each component, or of the rotated pair at once.
 func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot, m *motion, put func(sd []float64, isFirst bool)) error {
-	for k, c := range m.members {
-		solver, err := solvers.Get(c.StepS)
-		if err != nil {
-			return err
-		}
-		if m.isRotated() {
-			sd, err := m.rotatedSD(ctx, snapshot, solver)
-			if err != nil {
-				return err
-			}
+	if m.isRotated() {
+		sd, err := m.rotatedSD(ctx, snapshot, solvers)
+		if err == nil {
 			put(sd, true)
-			return nil
 		}
-		samples, err := snapshot.Samples(ctx, c.RecordID, c.Role)
+		return err
+	}
+	for k, c := range m.members {
+		conditioned, err := readConditioned(ctx, snapshot, c)
 		if err != nil {
 			return err
 		}
-		put(solver.SD(nil, samples), k == 0)
+		solver, err := solvers.Get(conditioned.StepS)
+		if err != nil {
+			return err
+		}
+		put(solver.SD(nil, conditioned.Acceleration), k == 0)
 	}
 	return nil
+}
+
+// readConditioned reads a component's motion and carries out the recipe of the
+// generation, as was done before its stored spectra were computed.
+func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldComponent) (condition.Conditioned, error) {
+	recipe, err := condition.FromCanonical(snapshot.Generation.Recipe.Steps)
+	if err != nil {
+		return condition.Conditioned{}, err
+	}
+	delivered, err := snapshot.Motion(ctx, c.RecordID, c.Role)
+	if err != nil {
+		return condition.Conditioned{}, err
+	}
+	return recipe.Apply(condition.Component(delivered))
 }

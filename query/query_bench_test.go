@@ -72,7 +72,7 @@ func randomSpectra(rng *rand.Rand, grid db.Grid) db.Spectra {
 		}
 		computed = append(computed, sd)
 	}
-	return db.NewSpectra(computed, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 0.1, db.MeasurePGD: 0.01})
+	return db.NewSpectra(computed, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 0.1, db.MeasurePGD: 0.01}, nil)
 }
 
 // BenchmarkSpectrum asks for 251 periods of 3000 stored components.

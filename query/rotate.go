@@ -45,21 +45,21 @@ func notRotatable(first, second *db.HeldComponent) string {
 }
 
 // pairSamples reads two horizontals that can be rotated and makes them fit for
-// it.
-func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (p spectrum.Pair, err error) {
+// it, at steps of stepS.
+func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (p spectrum.Pair, stepS float64, err error) {
 	deg, _, err := between(first, second)
 	if err != nil {
-		return p, err
+		return p, 0, err
 	}
-	a, err := snapshot.Samples(ctx, first.RecordID, first.Role)
+	a, err := readConditioned(ctx, snapshot, first)
 	if err != nil {
-		return p, err
+		return p, 0, err
 	}
-	b, err := snapshot.Samples(ctx, second.RecordID, second.Role)
+	b, err := readConditioned(ctx, snapshot, second)
 	if err != nil {
-		return p, err
+		return p, 0, err
 	}
-	return spectrum.NewPair(a, b, deg), nil
+	return spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b), deg), a.StepS, nil
 }
 
 // findRotated notes peaks of rotated pairs. For ComponentAll these are all that
@@ -134,20 +134,24 @@ func (p *picker) mayTake(m *motion) (bool, error) {
 
 // computePeaks is of a rotated motion.
 func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (*spectrum.GroundPeaks, error) {
-	p, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
+	p, stepS, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
 	if err != nil {
 		return nil, fmt.Errorf("compute peaks of %s %s: %w", m.record(), m.role, err)
 	}
-	median, maximum := p.Peaks(m.members[0].StepS)
+	median, maximum := p.Peaks(stepS)
 	if Component(m.role) == ComponentRotD100 {
 		return &maximum, nil
 	}
 	return &median, nil
 }
 
-// rotatedSD is the SD of a rotated motion by a solver of its time step.
-func (m *motion) rotatedSD(ctx context.Context, snapshot *db.Snapshot, solver *spectrum.Solver) ([]float64, error) {
-	p, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
+// rotatedSD is the SD of a rotated motion.
+func (m *motion) rotatedSD(ctx context.Context, snapshot *db.Snapshot, solvers *spectrum.Solvers) ([]float64, error) {
+	p, stepS, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
+	if err != nil {
+		return nil, err
+	}
+	solver, err := solvers.Get(stepS)
 	if err != nil {
 		return nil, err
 	}

@@ -12,6 +12,7 @@ import (
 	"time"
 
 	"swaybook/db"
+	"swaybook/pipeline/condition"
 	"swaybook/pipeline/spectrum"
 )
 
@@ -94,7 +95,7 @@ func newStore(t testing.TB, grid db.Grid, records []inventedRecord) *db.Store {
 		if err != nil {
 			return err
 		}
-		g, err := tx.CreateGeneration(ctx, db.Recipe{Name: "as-delivered", Steps: "[]"}, grid, spectrum.Version)
+		g, err := tx.PutGeneration(ctx, db.Recipe{Name: "as-delivered", Steps: condition.AsDelivered().Canonical()}, grid, spectrum.Version)
 		if err != nil {
 			return err
 		}
@@ -214,7 +215,7 @@ func (c inventedComponent) spectra(grid db.Grid) db.Spectra {
 	}
 	return db.NewSpectra(out, map[string]float64{
 		db.MeasurePGA: c.level * StandardGravity, db.MeasurePGV: c.level, db.MeasurePGD: c.level,
-	})
+	}, nil)
 }
 
 // near allows rounding of a few operations.

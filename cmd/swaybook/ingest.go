@@ -25,7 +25,8 @@ func ingestCommand() *cli.Command {
 		ArgsUsage: "PATH...",
 		Description: "Reads files and folders (with all that is below them). Files are recognised by their content.\n" +
 			"Archives (zip, tar, tar.gz, gz and the like) are read where they lie.\n" +
-			"Then the horizontals of every record that has two are rotated, unless that was done before.\n" +
+			"Raw components are conditioned by a recipe before their spectra are computed. Then the horizontals of\n" +
+			"every record that has two are rotated, unless that was done before.\n" +
 			"Running it again is harmless: content that the store holds is not read twice, and a run that was\n" +
 			"stopped is finished by the next one.",
 		Flags: []cli.Flag{
@@ -36,6 +37,7 @@ func ingestCommand() *cli.Command {
 			&cli.Float64Flag{Name: "dt", DefaultText: "none", Usage: "time step in `S` of files that state none"},
 			&cli.StringFlag{Name: "periods", Usage: "periods of a new store's grid in s: a `LIST` such as 0.1,0.2,1 or @FILE"},
 			&cli.StringFlag{Name: "dampings", Usage: "damping ratios of a new store's grid, a `LIST` such as 2%,5%,0.1"},
+			&cli.StringFlag{Name: "recipe", Usage: "what is done to components before their spectra: standard, as-delivered, or a TOML `FILE`; without PATH of what is held only (default: the store's, of a new one standard)"},
 			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files in work at the same time"},
 			rotationFlag(),
 			&cli.BoolFlag{Name: "json", DisableDefaultText: true, Usage: "print the summary as JSON"},
@@ -65,7 +67,7 @@ type ingestOptions struct {
 }
 
 func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
-	if !c.Args().Present() {
+	if !c.Args().Present() && !c.IsSet("recipe") {
 		return o, usagef("ingest needs at least one PATH")
 	}
 	logger, err := newLogger(c)
@@ -101,12 +103,20 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	if o.pipeline.Grid, err = ingestGrid(c); err != nil {
 		return o, err
 	}
+	if name := c.String("recipe"); name != "" {
+		recipe, err := readRecipe(name)
+		if err != nil {
+			return o, err
+		}
+		o.pipeline.Recipe = &recipe
+		o.pipeline.Own[name] = "a recipe itself"
+	}
 	return o, o.readCatalogue(c.String("catalogue"))
 }
 
 func pipelineOptions(store string, m *monitor) pipeline.Options {
 	return pipeline.Options{
-		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Rotated: m.record, Doubted: m.doubt,
+		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Solved: m.component, Rotated: m.record, Doubted: m.doubt,
 		Own: map[string]string{store: "the store itself", store + "-wal": "the store's log", store + "-shm": "the store's log"},
 	}
 }
@@ -304,8 +314,14 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	if r.Channels > 0 {
 		p.printf("  channels rejected from files stored     %7d\n", r.Channels)
 	}
+	if r.Recomputed > 0 {
+		p.printf("  held components computed anew           %7d\n", r.Recomputed)
+	}
+	if r.NotRecomputed > 0 {
+		p.printf("  held components that could not be       %7d\n", r.NotRecomputed)
+	}
 	r.printRotation(p)
-	if r.Stored == 0 && r.Rotated == 0 {
+	if r.Stored == 0 && r.Rotated == 0 && r.Recomputed == 0 {
 		p.printf("Nothing new was stored.\n")
 	}
 	p.notes("Skipped:", r.SkippedFiles, r.SkippedOmitted, "--json lists them")

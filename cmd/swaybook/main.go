@@ -103,6 +103,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			queryCommand(),
 			exportCommand(),
 			formatsCommand(),
+			recipesCommand(),
 			demoCommand(),
 		},
 		Writer:         stdout,

@@ -30,7 +30,7 @@ type monitor struct {
 	terminal bool
 	quiet    bool
 	bar      *progressbar.ProgressBar // of the stage at work
-	rotating bool                     // whether that is the second
+	stage    string                   // "" for that of files
 	started  time.Time
 	logged   time.Time
 
@@ -96,12 +96,23 @@ func (m *monitor) file(p pipeline.Progress) {
 	m.show("ingesting", "files", p.Done, p.Total)
 }
 
-// record takes note of one record of the second stage done.
-func (m *monitor) record(r pipeline.Rotated) {
-	if !m.rotating {
+// component takes note of one held component computed anew.
+func (m *monitor) component(done, total int) {
+	m.enter("computing")
+	m.show("computing", "components", done, total)
+}
+
+// enter begins another stage.
+func (m *monitor) enter(stage string) {
+	if m.stage != stage {
 		m.finish()
-		m.rotating, m.bar, m.started = true, nil, time.Now()
+		m.stage, m.bar, m.started = stage, nil, time.Now()
 	}
+}
+
+// record takes note of one record of the last stage done.
+func (m *monitor) record(r pipeline.Rotated) {
+	m.enter("rotating")
 	if r.Reason != "" {
 		m.unfit.add(r.Reason, r.Record, r.Detail)
 	}

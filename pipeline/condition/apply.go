@@ -31,6 +31,15 @@ type Conditioned struct {
 	LowCutHz, HighCutHz float64
 	// Oversampled is by how much the step is finer than the component's.
 	Oversampled int
+	// IsChanged is false where the component was left as it was delivered.
+	IsChanged bool
+}
+
+// SamplesBefore is by how many samples c begins before d, which has the same step,
+// where the components that they were made of began together; negative where it begins
+// after d.
+func (c Conditioned) SamplesBefore(d Conditioned) int {
+	return int(math.Round((c.LeadS - d.LeadS) / c.StepS))
 }
 
 // Apply carries out the recipe. The error says which step cannot be done and why.
@@ -42,6 +51,7 @@ func (r Recipe) Apply(c Component) (Conditioned, error) {
 		return out, nil
 	}
 	w := &work{Conditioned: out}
+	w.IsChanged = true
 	w.Acceleration = slices.Clone(c.Acceleration)
 	for i, s := range r.Steps {
 		if err := w.do(s); err != nil {

@@ -118,6 +118,15 @@ func (r Recipe) Canonical() string {
 	return string(text)
 }
 
+// FromCanonical reads what Canonical wrote.
+func FromCanonical(text string) (Recipe, error) {
+	var r Recipe
+	if err := json.Unmarshal([]byte(text), &r); err != nil {
+		return r, fmt.Errorf("read recipe: %w", err)
+	}
+	return r, r.Validate()
+}
+
 // Hash identifies what a recipe does: the SHA-256 of its canonical form, in hexadecimal.
 func (r Recipe) Hash() string {
 	sum := sha256.Sum256([]byte(r.Canonical()))

@@ -70,12 +70,14 @@ type Pair struct {
 	// them it is at rest at once.
 	ChangedA, ChangedB bool
 
-	common int // samples of the shorter component
+	from, to int // what both components have: samples from … to-1
 }
 
 // NewPair makes a pair of two components, betweenDeg degrees from first to second;
-// it panics where Between finds directions too near. The shorter is followed by zeros, since the ground is still
-// after the last sample. second is taken at a right angle to first, with α the angle,
+// it panics where Between finds directions too near. second begins so many samples after
+// first, before it where later is negative. Zeros precede what begins later and follow
+// what ends earlier, since the ground is still before and after. second is taken at a
+// right angle to first, with α the angle,
 //
 //	second⊥ = (second − first·cos α)/sin α,
 //
@@ -84,13 +86,16 @@ type Pair struct {
 //
 // first and second keep their values, and the pair shares their samples where
 // these need no change.
-func NewPair(first, second []float64, betweenDeg float64) Pair {
-	n := max(len(first), len(second))
+func NewPair(first, second []float64, later int, betweenDeg float64) Pair {
+	before, beforeSecond := max(0, -later), max(0, later)
+	ends := [2]int{before + len(first), beforeSecond + len(second)}
+	n := max(ends[0], ends[1])
 	p := Pair{
-		A: followedByZeros(first, n), B: followedByZeros(second, n),
+		A: amongZeros(first, before, n), B: amongZeros(second, beforeSecond, n),
 		ChangedA: len(first) < n, ChangedB: len(second) < n,
-		common: min(len(first), len(second)),
+		from: max(before, beforeSecond), to: min(ends[0], ends[1]),
 	}
+	p.to = max(p.from, p.to)
 	if !(math.Abs(math.Remainder(betweenDeg-90, 180)) < rightAngleDeg) {
 		p.B, p.ChangedB = turnedUpright(p.A, p.B, betweenDeg), true
 	}
@@ -112,26 +117,27 @@ func turnedUpright(first, second []float64, betweenDeg float64) []float64 {
 func sinCosBetween(deg float64) (sin, cos float64) { return math.Sincos(deg * math.Pi / 180) }
 
 // Peaks is RotDPeaks of the pair, but that PGV and PGD are taken where both
-// components were recorded. A velocity that a component has at its end is one of
+// components have samples. A velocity that a component has at its end is one of
 // its baseline as a rule, and would carry the ground away for as long as the other
 // goes on.
 func (p Pair) Peaks(stepS float64) (rotd50, rotd100 GroundPeaks) {
 	rotd50, rotd100 = RotDPeaks(stepS, p.A, p.B)
-	if p.common == len(p.A) {
+	if p.to-p.from == len(p.A) {
 		return rotd50, rotd100
 	}
-	median, maximum := RotDPeaks(stepS, p.A[:p.common], p.B[:p.common])
+	median, maximum := RotDPeaks(stepS, p.A[p.from:p.to], p.B[p.from:p.to])
 	rotd50.PGV, rotd50.PGD = median.PGV, median.PGD
 	rotd100.PGV, rotd100.PGD = maximum.PGV, maximum.PGD
 	return rotd50, rotd100
 }
 
-// followedByZeros returns the samples with zeros after them up to a length of n.
-func followedByZeros(samples []float64, n int) []float64 {
+// amongZeros returns the samples with so many zeros before them, and zeros after them up
+// to a length of n.
+func amongZeros(samples []float64, before, n int) []float64 {
 	if len(samples) == n {
 		return samples
 	}
 	out := make([]float64, n)
-	copy(out, samples)
+	copy(out[before:], samples)
 	return out
 }

@@ -34,7 +34,7 @@ func TestPairPadsAndTurns(t *testing.T) {
 	for _, test := range tests {
 		t.Run(test.name, func(t *testing.T) {
 			keep := [2][]float64{slices.Clone(test.first), slices.Clone(test.second)}
-			p := NewPair(test.first, test.second, test.between)
+			p := NewPair(test.first, test.second, 0, test.between)
 			want := test.b
 			if want == nil && len(test.a) > 0 {
 				second := append(slices.Clone(test.second), make([]float64, len(test.a)-len(test.second))...)
@@ -59,7 +59,7 @@ func TestPairRefusesNearDirections(t *testing.T) {
 					t.Errorf("%g° is taken", between)
 				}
 			}()
-			NewPair(shaken(1, 9), shaken(2, 9), between)
+			NewPair(shaken(1, 9), shaken(2, 9), 0, between)
 		}()
 	}
 }
@@ -127,7 +127,7 @@ func TestPairPeaksDoNotCoast(t *testing.T) {
 		push[i] = 1
 	}
 	for _, order := range [][2][]float64{{long, push}, {push, long}} {
-		p := NewPair(order[0], order[1], 90)
+		p := NewPair(order[0], order[1], 0, 90)
 		median, maximum := p.Peaks(stepS)
 		want := GroundPeaks{PGA: 3, PGV: 1, PGD: 0.5}
 		if math.Abs(maximum.PGA-want.PGA) > 1e-12 || math.Abs(maximum.PGV-want.PGV) > 1e-12 || math.Abs(maximum.PGD-want.PGD) > 1e-12 {
@@ -145,12 +145,12 @@ func TestPairPeaksDoNotCoast(t *testing.T) {
 func TestPairPeaksOfEqualLengths(t *testing.T) {
 	x, y := shaken(1, 60), shaken(2, 60)
 	for _, between := range []float64{90, 60} {
-		p := NewPair(x, y, between)
+		p := NewPair(x, y, 0, between)
 		median, maximum := p.Peaks(0.01)
 		if m50, m100 := RotDPeaks(0.01, p.A, p.B); median != m50 || maximum != m100 {
 			t.Errorf("%g°: %+v and %+v, want %+v and %+v", between, median, maximum, m50, m100)
 		}
-		cut := NewPair(x, y[:40], between)
+		cut := NewPair(x, y[:40], 0, between)
 		median, maximum = cut.Peaks(0.01)
 		whole50, whole100 := RotDPeaks(0.01, cut.A, cut.B)
 		common50, common100 := RotDPeaks(0.01, p.A[:40], p.B[:40])

@@ -51,7 +51,7 @@ func TestRightAngle(t *testing.T) {
 	for i := range x {
 		oblique[i] = x[i]*0.5 + y[i]*math.Sqrt(0.75)
 	}
-	got := NewPair(x, oblique, 60).B
+	got := NewPair(x, oblique, 0, 60).B
 	for i := range y {
 		if math.Abs(got[i]-y[i]) > 1e-15 {
 			t.Fatalf("sample %d: %v, want %v", i, got[i], y[i])

@@ -1,0 +1,27 @@
+package db
+
+import (
+	"context"
+	"fmt"
+)
+
+// HeldRecipe is a recipe of a generation in the store, and that one's state: building,
+// published or superseded.
+type HeldRecipe struct {
+	Recipe Recipe
+	State  string
+}
+
+// Recipes returns the recipes of the store's generations, the published one first.
+func (s *Store) Recipes(ctx context.Context) ([]HeldRecipe, error) {
+	rows, err := s.read.QueryContext(ctx, `SELECT r.name, r.steps, g.state FROM generation g JOIN recipe r ON r.id = g.recipe_id
+		ORDER BY g.state <> 'published', g.id`)
+	if err != nil {
+		return nil, fmt.Errorf("read recipes: %w", err)
+	}
+	found, err := collect(rows, func(h *HeldRecipe) []any { return []any{&h.Recipe.Name, &h.Recipe.Steps, &h.State} })
+	if err != nil {
+		return nil, fmt.Errorf("read recipes: %w", err)
+	}
+	return found, nil
+}

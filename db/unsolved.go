@@ -1,0 +1,57 @@
+package db
+
+import (
+	"context"
+	"fmt"
+)
+
+// Unsolved is a component without a spectrum in a generation.
+type Unsolved struct {
+	ComponentID, RecordID int64
+	Code                  string // the record's
+	Role                  string
+}
+
+// Unsolved returns the components that lack their spectra in the generation, in the
+// order in which they were stored.
+func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, error) {
+	return unsolved(ctx, s.read, generationID, "")
+}
+
+// IsUnsolved reports whether the record still holds this very component, and lacks its
+// spectra.
+func (t *Tx) IsUnsolved(ctx context.Context, generationID int64, u Unsolved) (bool, error) {
+	found, err := unsolved(ctx, t.tx, generationID, "AND c.id = ?", u.ComponentID)
+	return len(found) == 1 && found[0] == u, err
+}
+
+// unsolved looks for each component's spectrum of the first damping: all dampings are
+// stored in one transaction.
+func unsolved(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Unsolved, error) {
+	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role FROM component c JOIN record r ON r.id = c.record_id
+		WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.generation_id = ? AND s.damping_position = 0
+			AND s.role = c.role AND s.record_id = c.record_id) `+condition+` ORDER BY c.id`, append([]any{generationID}, args...)...)
+	if err != nil {
+		return nil, fmt.Errorf("find components without spectrum: %w", err)
+	}
+	found, err := collect(rows, func(u *Unsolved) []any { return []any{&u.ComponentID, &u.RecordID, &u.Code, &u.Role} })
+	if err != nil {
+		return nil, fmt.Errorf("find components without spectrum: %w", err)
+	}
+	return found, nil
+}
+
+// ReadUnsolved reads what is stored of a component's samples.
+func (s *Store) ReadUnsolved(ctx context.Context, u Unsolved) (StoredMotion, error) {
+	m, err := readSeries(ctx, s.read, `c.id = ?`, u.ComponentID)
+	if err != nil {
+		return m, fmt.Errorf("record %s: %w", u.Code, err)
+	}
+	return m, nil
+}
+
+// AddSolved stores what was computed of a component. Nothing of that may be stored: see
+// IsUnsolved.
+func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, computed Spectra) error {
+	return t.addSpectra(ctx, u.RecordID, u.Role, generationID, computed)
+}

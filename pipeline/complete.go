@@ -1,0 +1,81 @@
+package pipeline
+
+import (
+	"context"
+	"slices"
+
+	"swaybook/db"
+	"swaybook/pipeline/condition"
+)
+
+// complete computes the spectra of held components that the generation lacks, from the
+// stored samples: all of them where a recipe is new to the store, and those of a run
+// that was stopped, or that served another recipe. A component that cannot be solved is
+// reported and left alone.
+func (w *writer) complete(ctx context.Context) error {
+	lacking, err := w.store.Unsolved(ctx, w.run.generation.ID)
+	if err != nil || len(lacking) == 0 {
+		return err
+	}
+	c := &completer{writer: w, total: len(lacking)}
+	return stage[db.Unsolved, completed]{
+		workers: w.opts.Workers, clock: w.opts.Clock, process: c.process,
+		weigh: func(completed) int { return 1 }, store: c.storeBatch,
+	}.run(ctx, slices.Values(lacking))
+}
+
+// completed is a held component with what was computed of it.
+type completed struct {
+	component db.Unsolved
+	spectra   db.Spectra
+	err       error // why it could not be
+}
+
+// completer computes components and stores what it computes.
+type completer struct {
+	*writer
+	done, total int // the writing goroutine's
+}
+
+func (c *completer) process(ctx context.Context, u db.Unsolved) (completed, error) {
+	stored, err := c.store.ReadUnsolved(ctx, u)
+	if err != nil {
+		return completed{}, err
+	}
+	out := completed{component: u}
+	motion, err := stored.DecodeMotion()
+	if err == nil {
+		out.spectra, err = c.run.reader.computer.compute(condition.Component(motion))
+	}
+	out.err = err
+	return out, ctx.Err()
+}
+
+// storeBatch stores what was computed in one transaction. A component that another
+// process has changed or solved meanwhile is left alone.
+func (c *completer) storeBatch(ctx context.Context, batch []completed) error {
+	err := c.store.Update(ctx, func(tx *db.Tx) error {
+		for _, done := range batch {
+			if done.err != nil {
+				continue
+			}
+			current, err := tx.IsUnsolved(ctx, c.run.generation.ID, done.component)
+			if err == nil && current {
+				err = tx.AddSolved(ctx, done.component, c.run.generation.ID, done.spectra)
+			}
+			if err != nil {
+				return err
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		return err
+	}
+	for _, done := range batch {
+		c.done++
+		c.summary.addCompleted(done)
+		c.opts.Solved(c.done, c.total)
+	}
+	return nil
+}

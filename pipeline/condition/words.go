@@ -1,0 +1,50 @@
+package condition
+
+import (
+	"fmt"
+	"strings"
+)
+
+// Words says for people what the step does.
+func (s Step) Words() string {
+	switch s.Do {
+	case KindMean:
+		if s.Window == WindowPreEvent {
+			return "takes off the mean of what precedes the motion, of the whole where that is shorter than 2 s"
+		}
+		return "takes off the mean"
+	case KindTrend:
+		return "takes off the " + [...]string{"", "straight line", "parabola"}[s.Degree] + " that fits best"
+	case KindTaper:
+		return fmt.Sprintf("cosine bells over %g %% of the length at either end", 100*s.Share)
+	case KindTrim:
+		if s.ToS == 0 {
+			return fmt.Sprintf("keeps what follows %g s", s.FromS)
+		}
+		return fmt.Sprintf("keeps %g to %g s", s.FromS, s.ToS)
+	case KindOversample:
+		return fmt.Sprintf("band-limited samples at steps %d times finer", s.Factor)
+	}
+	return s.filterWords()
+}
+
+func (s Step) filterWords() string {
+	const kind = "Butterworth, order %d forward and again backward, "
+	if s.ByNoise == nil {
+		return fmt.Sprintf(kind+"corner %g Hz", s.Order, s.CornerHz)
+	}
+	n := s.ByNoise
+	otherwise := "none"
+	if n.ElseHz > 0 {
+		otherwise = fmt.Sprintf("%g Hz", n.ElseHz)
+	}
+	return fmt.Sprintf(kind+"corner where motion is %g times the noise, %g to %g Hz; %s where no noise was recorded", s.Order, n.Ratio, n.LeastHz, n.MostHz, otherwise)
+}
+
+// Applies says for people to which components the steps apply.
+func (r Recipe) Applies() string {
+	if len(r.States) == 0 {
+		return "no component"
+	}
+	return strings.Join(r.States, ", ") + " components"
+}
