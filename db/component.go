@@ -50,7 +50,38 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 	if err := t.exec(ctx, `INSERT INTO series (component_id, sha256, data) VALUES (?, ?, ?)`, id, digest, data); err != nil {
 		return fmt.Errorf("store samples: %w", err)
 	}
+	for _, f := range c.Findings {
+		err := t.exec(ctx, `INSERT INTO finding (component_id, flag, value, bound, words) VALUES (?, ?, ?, ?, ?)`, id, f.Flag, f.Value, f.Bound, f.Words)
+		if err != nil {
+			return fmt.Errorf("store finding: %w", err)
+		}
+	}
 	return t.addSpectra(ctx, recordID, c.Role, generation, computed)
+}
+
+// FlagDuplicated is of components of one record with the same samples.
+const FlagDuplicated = "duplicated"
+
+// FlagTwins notes with the record's components that have samples of this digest that
+// another one, which comes now, has them too. It returns what is to be noted with that
+// one, nothing where there are none.
+func (t *Tx) FlagTwins(ctx context.Context, recordID int64, digest string) ([]Finding, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT c.id FROM component c JOIN series s ON s.component_id = c.id WHERE c.record_id = ? AND s.sha256 = ?`, recordID, digest)
+	if err != nil {
+		return nil, fmt.Errorf("find equal components: %w", err)
+	}
+	twins, err := collect(rows, func(id *int64) []any { return []any{id} })
+	if err != nil || len(twins) == 0 {
+		return nil, err
+	}
+	f := Finding{Flag: FlagDuplicated, Value: float64(len(twins)), Words: "another component of the record has the same samples"}
+	for _, id := range twins {
+		err := t.exec(ctx, `INSERT OR IGNORE INTO finding (component_id, flag, value, bound, words) VALUES (?, ?, ?, ?, ?)`, id, f.Flag, f.Value, f.Bound, f.Words)
+		if err != nil {
+			return nil, fmt.Errorf("store finding: %w", err)
+		}
+	}
+	return []Finding{f}, nil
 }
 
 func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, generation int64, computed Spectra) error {
@@ -62,8 +93,8 @@ func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, genera
 		}
 	}
 	if c := computed.conditioning; c != nil {
-		err := t.exec(ctx, `INSERT INTO conditioning (generation_id, record_id, role, step_s, samples, lead_s, low_cut_hz, high_cut_hz)
-			VALUES (?, ?, ?, ?, ?, ?, ?, ?)`, generation, recordID, role, c.StepS, c.Samples, c.LeadS, c.LowCutHz, c.HighCutHz)
+		err := t.exec(ctx, `INSERT INTO conditioning (generation_id, record_id, role, step_s, samples, lead_s, low_cut_hz, high_cut_hz, long_s)
+			VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?)`, generation, recordID, role, c.StepS, c.Samples, c.LeadS, c.LowCutHz, c.HighCutHz, c.LongS)
 		if err != nil {
 			return fmt.Errorf("store conditioning: %w", err)
 		}

@@ -15,6 +15,11 @@ type HeldComponent struct {
 	Record   *Record
 	Component
 	Peaks // of the ground motion
+	// Measures are the other measures of the conditioned motion, by name.
+	Measures map[string]float64
+	// Conditioning is what the generation's recipe did, nil where it left the component as
+	// it was delivered.
+	Conditioning *Conditioning
 }
 
 // Peaks are PGA in m/s², PGV in m/s and PGD in m, NaN where the store has lost one.
@@ -32,11 +37,14 @@ type Details uint
 
 // What can be asked for.
 const (
-	DetailRecord  Details = 1 << iota // the rest of Record
-	DetailMotion                      // Axis, AzimuthDeg, StepS and Start
-	DetailPeaks                       // Peaks
-	DetailChannel                     // ID and the rest of Component, the source file's description too
-	AllDetails    = DetailRecord | DetailMotion | DetailPeaks | DetailChannel
+	DetailRecord   Details = 1 << iota // the rest of Record
+	DetailMotion                       // Axis, AzimuthDeg, StepS and Start
+	DetailPeaks                        // Peaks
+	DetailBand                         // StepS, LowCutHz, HighCutHz and Conditioning
+	DetailMeasures                     // Measures
+	DetailFindings                     // Findings
+	DetailChannel                      // ID and the rest of Component, the source file's description too
+	AllDetails     = DetailRecord | DetailMotion | DetailPeaks | DetailBand | DetailMeasures | DetailFindings | DetailChannel
 )
 
 // Components returns every held component with these details, ordered by record
@@ -70,6 +78,24 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 	if err := s.tx.QueryRowContext(ctx, `SELECT count(*) FROM component c`+condition, args...).Scan(&n); err != nil {
 		return nil, fmt.Errorf("count components: %w", err)
 	}
+	var conditioned map[roleOf]*Conditioning
+	if details&DetailBand != 0 {
+		if conditioned, err = s.conditionings(ctx, condition, args); err != nil {
+			return nil, err
+		}
+	}
+	var findings map[roleOf][]Finding
+	if details&DetailFindings != 0 {
+		if findings, err = s.findings(ctx, condition, args); err != nil {
+			return nil, err
+		}
+	}
+	var measures map[roleOf]map[string]float64
+	if details&DetailMeasures != 0 {
+		if measures, err = s.measures(ctx, condition, args); err != nil {
+			return nil, err
+		}
+	}
 	rows, err := s.tx.QueryContext(ctx, componentQuery(details, s.Generation.ID)+condition+` ORDER BY r.code, c.role`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
@@ -84,6 +110,8 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 			return nil, fmt.Errorf("read components: %w", err)
 		}
 		v.Record = records[v.RecordID]
+		v.Findings = findings[roleOf{v.RecordID, v.Role}]
+		v.Conditioning, v.Measures = conditioned[roleOf{v.RecordID, v.Role}], measures[roleOf{v.RecordID, v.Role}]
 		if v.Start, err = parseTime(v.start); err != nil {
 			return nil, err
 		}
@@ -96,6 +124,97 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 		out = append(out, v.HeldComponent)
 	}
 	return out, rows.Err()
+}
+
+// roleOf is a component of a record.
+type roleOf struct {
+	record int64
+	role   string
+}
+
+// ofRecords restricts rows of a generation to the records of the components that meet
+// the condition, where there is one.
+func (s *Snapshot) ofRecords(condition string, args []any) (string, []any) {
+	text := ` WHERE generation_id = ?`
+	if condition != "" {
+		text += ` AND record_id IN (SELECT c.record_id FROM component c` + condition + `)`
+	}
+	return text, append([]any{s.Generation.ID}, args...)
+}
+
+// conditionings are those of the generation.
+func (s *Snapshot) conditionings(ctx context.Context, condition string, args []any) (map[roleOf]*Conditioning, error) {
+	where, args := s.ofRecords(condition, args)
+	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, step_s, samples, lead_s, low_cut_hz, high_cut_hz, long_s FROM conditioning`+where, args...)
+	if err != nil {
+		return nil, fmt.Errorf("read conditioning: %w", err)
+	}
+	type row struct {
+		roleOf
+		Conditioning
+	}
+	found, err := collect(rows, func(v *row) []any {
+		return []any{&v.record, &v.role, &v.StepS, &v.Samples, &v.LeadS, &v.LowCutHz, &v.HighCutHz, &v.LongS}
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read conditioning: %w", err)
+	}
+	out := make(map[roleOf]*Conditioning, len(found))
+	for i := range found {
+		out[found[i].roleOf] = &found[i].Conditioning
+	}
+	return out, nil
+}
+
+// findings are those of the components that meet the condition, in the order of flags.
+func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (map[roleOf][]Finding, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role, f.flag, f.value, f.bound, f.words
+		FROM finding f JOIN component c ON c.id = f.component_id`+condition+` ORDER BY f.component_id, f.flag`, args...)
+	if err != nil {
+		return nil, fmt.Errorf("read findings: %w", err)
+	}
+	type row struct {
+		roleOf
+		Finding
+	}
+	found, err := collect(rows, func(v *row) []any { return []any{&v.record, &v.role, &v.Flag, &v.Value, &v.Bound, &v.Words} })
+	if err != nil {
+		return nil, fmt.Errorf("read findings: %w", err)
+	}
+	out := map[roleOf][]Finding{}
+	for _, v := range found {
+		out[v.roleOf] = append(out[v.roleOf], v.Finding)
+	}
+	return out, nil
+}
+
+// measures are those of the generation but for the peaks.
+func (s *Snapshot) measures(ctx context.Context, condition string, args []any) (map[roleOf]map[string]float64, error) {
+	where, args := s.ofRecords(condition, args)
+	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, name, value FROM measure`+where+
+		` AND name NOT IN ('`+MeasurePGA+`', '`+MeasurePGV+`', '`+MeasurePGD+`')`, args...)
+	if err != nil {
+		return nil, fmt.Errorf("read measures: %w", err)
+	}
+	type row struct {
+		roleOf
+		name  string
+		value float64
+	}
+	found, err := collect(rows, func(v *row) []any { return []any{&v.record, &v.role, &v.name, &v.value} })
+	if err != nil {
+		return nil, fmt.Errorf("read measures: %w", err)
+	}
+	out := map[roleOf]map[string]float64{}
+	for _, v := range found {
+		m, ok := out[v.roleOf]
+		if !ok {
+			m = map[string]float64{}
+			out[v.roleOf] = m
+		}
+		m[v.name] = v.value
+	}
+	return out, nil
 }
 
 // componentRow is a component as SQL gives it.
@@ -120,14 +239,18 @@ func (v *componentRow) columns(d Details) (names string, into []any) {
 		names += `, c.axis, c.azimuth_deg, c.step_s, coalesce(c.start_at, '')`
 		into = append(into, &v.Axis, &v.AzimuthDeg, &v.StepS, &v.start)
 	}
+	if d&DetailBand != 0 {
+		names += `, c.step_s, c.low_cut_hz, c.high_cut_hz`
+		into = append(into, &v.StepS, &v.LowCutHz, &v.HighCutHz)
+	}
 	if d&DetailPeaks != 0 {
 		names += `, pga.value, pgv.value, pgd.value`
 		into = append(into, &v.pga, &v.pgv, &v.pgd)
 	}
 	if d&DetailChannel != 0 {
-		names += `, c.id, c.label, c.rank, c.channel, c.samples, c.unit, c.processing, c.low_cut_hz, c.high_cut_hz,
+		names += `, c.id, c.label, c.rank, c.channel, c.samples, c.unit, c.processing,
 			c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format`
-		into = append(into, &v.ID, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing, &v.LowCutHz, &v.HighCutHz,
+		into = append(into, &v.ID, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing,
 			&v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine, &v.SourcePath, &v.SourceSHA256, &v.SourceFormat)
 	}
 	return names, into

@@ -14,6 +14,9 @@ import (
 	"testing/fstest"
 
 	"golang.org/x/sync/errgroup"
+
+	"swaybook/migrations"
+	"swaybook/pipeline/condition"
 )
 
 func TestEveryConnectionHasThePragmas(t *testing.T) {
@@ -204,5 +207,18 @@ func TestAnotherSolversStoreIsNotMigrated(t *testing.T) {
 		if _, err := open(t.Context(), path, "solver 2"); !errors.Is(err, ErrOtherGeneration) {
 			t.Errorf("%s: %v, want %v", name, err, ErrOtherGeneration)
 		}
+	}
+}
+
+// The migration that gave recipes their canonical form wrote that of the one recipe there
+// was, with its hash.
+func TestAsDeliveredIsWhatTheMigrationWrote(t *testing.T) {
+	step, err := migrations.FS.ReadFile("00003_condition_components.sql")
+	if err != nil {
+		t.Fatal(err)
+	}
+	r := Recipe{Name: "as-delivered", Steps: condition.AsDelivered().Canonical()}
+	if !strings.Contains(string(step), "steps = '"+r.Steps+"', hash = '"+r.hash()+"'") {
+		t.Errorf("the migration does not write %s with hash %s", r.Steps, r.hash())
 	}
 }

@@ -9,17 +9,18 @@ import (
 // published or superseded.
 type HeldRecipe struct {
 	Recipe Recipe
+	Hash   string
 	State  string
 }
 
 // Recipes returns the recipes of the store's generations, the published one first.
 func (s *Store) Recipes(ctx context.Context) ([]HeldRecipe, error) {
-	rows, err := s.read.QueryContext(ctx, `SELECT r.name, r.steps, g.state FROM generation g JOIN recipe r ON r.id = g.recipe_id
+	rows, err := s.read.QueryContext(ctx, `SELECT r.name, r.steps, r.hash, g.state FROM generation g JOIN recipe r ON r.id = g.recipe_id
 		ORDER BY g.state <> 'published', g.id`)
 	if err != nil {
 		return nil, fmt.Errorf("read recipes: %w", err)
 	}
-	found, err := collect(rows, func(h *HeldRecipe) []any { return []any{&h.Recipe.Name, &h.Recipe.Steps, &h.State} })
+	found, err := collect(rows, func(h *HeldRecipe) []any { return []any{&h.Recipe.Name, &h.Recipe.Steps, &h.Hash, &h.State} })
 	if err != nil {
 		return nil, fmt.Errorf("read recipes: %w", err)
 	}

@@ -37,9 +37,18 @@ const (
 
 // Names of the measures stored with every component.
 const (
-	MeasurePGA = "pga_m_s2"
-	MeasurePGV = "pgv_m_s"
-	MeasurePGD = "pgd_m"
+	MeasurePGA               = "pga_m_s2"
+	MeasurePGV               = "pgv_m_s"
+	MeasurePGD               = "pgd_m"
+	MeasureArias             = "arias_m_s"            // Arias intensity in m/s
+	MeasureCAV               = "cav_m_s"              // cumulative absolute velocity in m/s
+	MeasureStandardisedCAV   = "cav_standardised_m_s" // of seconds above 0.025 g only
+	MeasureSignificant575    = "d5_75_s"              // significant durations in s
+	MeasureSignificant595    = "d5_95_s"
+	MeasureBracketed         = "bracketed_s"          // between first and last 0.05 g, in s
+	MeasureRMS               = "rms_m_s2"             // root mean square over the significant duration, in m/s²
+	MeasureMeanPeriod        = "mean_period_s"        // in s
+	MeasureSpectrumIntensity = "spectrum_intensity_m" // Housner"s, in m
 )
 
 // Event is an earthquake. Nil and empty fields are unknown.
@@ -107,10 +116,19 @@ type Component struct {
 	HighCutHz  *float64
 	HeaderPeak *float64 // m/s²
 	Warnings   []string
+	Findings   []Finding // for writing, and where they are asked for
 	SourceID   int64
 	SourceLine int
 	// Of the source file, for reading only.
 	SourcePath, SourceSHA256, SourceFormat string
+}
+
+// Finding is one thing that is wrong with a component as it was delivered: the value
+// measured and the bound that it is beyond.
+type Finding struct {
+	Flag         string
+	Value, Bound float64
+	Words        string
 }
 
 // Source is a file whose channels are stored.
@@ -160,6 +178,7 @@ type Conditioning struct {
 	LeadS     float64  // of its first sample over the component's
 	LowCutHz  *float64 // corners of the filters that the recipe applied
 	HighCutHz *float64
+	LongS     *float64 // longest period that its high-pass filter leaves, in s
 }
 
 // Spectra is what is computed of one component, in the form in which it is stored.

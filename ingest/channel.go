@@ -151,4 +151,5 @@ type Channel struct {
 
 	Line     int      // 1-based line of the first sample; 0 where the file has no lines
 	Warnings []string // what a reader accepted but a person should know
+	Findings []Finding
 }

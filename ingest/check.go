@@ -118,7 +118,7 @@ func checkHeaderPeak(c *Channel, peak float64) error {
 	case off > maxPeakOff:
 		return refuse(c.Line, "peak", "samples reach %.5g m/s², the header says %.5g m/s²", peak, stated)
 	case off > doubtfulPeakOff:
-		c.warn("peak of the samples and of the header differ by more than %g %%", 100*doubtfulPeakOff)
+		c.find(FlagPeakMismatch, off, doubtfulPeakOff, "peak of the samples and of the header differ by more than %g %%", 100*doubtfulPeakOff)
 	}
 	return nil
 }

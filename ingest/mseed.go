@@ -172,7 +172,7 @@ func (c *mseedChannel) warnFlags(t *miniseed.Trace) error {
 		c.warn("%d samples are in two records, with the same values", t.Repeated)
 	}
 	if t.DriftS > c.StepS/2 {
-		c.warn("times of records are up to %.3g s off those that the rate gives", t.DriftS)
+		c.find(FlagIrregular, t.DriftS, 0.5*c.StepS, "times of records are up to %.3g s off those that the rate gives", t.DriftS)
 	}
 	return nil
 }

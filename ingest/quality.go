@@ -41,16 +41,16 @@ func flagQuality(c *Channel, low, high float64) {
 	s := series{x: c.Acceleration, low: low, high: high}
 	run, at, spikes, first := s.scan()
 	if run > 0 {
-		c.warn("%d consecutive samples at the extreme, from sample %d on: clipped?", run, at+1)
+		c.find(FlagClipped, float64(run), clippedRun-1, "%d consecutive samples at the extreme, from sample %d on: clipped?", run, at+1)
 	}
 	switch {
 	case spikes == 1:
-		c.warn("sample %d stands out of those around it: a spike?", first+1)
+		c.find(FlagSpikes, 1, 0, "sample %d stands out of those around it: a spike?", first+1)
 	case spikes > 1:
-		c.warn("%d single samples stand out of those around them, from sample %d on: spikes?", spikes, first+1)
+		c.find(FlagSpikes, float64(spikes), 0, "%d single samples stand out of those around them, from sample %d on: spikes?", spikes, first+1)
 	}
 	if run, at := s.dropout(c.StepS); run > 0 {
-		c.warn("%d equal samples, %.3g s, in the strong part, from sample %d on: lost data?", run, float64(run)*c.StepS, at+1)
+		c.find(FlagLostData, float64(run)*c.StepS, dropoutS, "%d equal samples, %.3g s, in the strong part, from sample %d on: lost data?", run, float64(run)*c.StepS, at+1)
 	}
 }
 

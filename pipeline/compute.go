@@ -6,7 +6,6 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline/condition"
-	"swaybook/pipeline/spectrum"
 )
 
 // computer turns delivered motions into what a generation stores of them. The workers
@@ -34,9 +33,8 @@ func (c *computer) compute(delivered condition.Component) (db.Spectra, error) {
 	if err != nil {
 		return db.Spectra{}, err
 	}
-	var peaks spectrum.GroundPeaks
-	peaks.PGA, peaks.PGV, peaks.PGD = spectrum.Peaks(motion.StepS, motion.Acceleration)
-	return c.solvers.spectra(solver.SD(nil, motion.Acceleration), peaks, conditioningOf(motion)), nil
+	sd := solver.SD(nil, motion.Acceleration)
+	return c.solvers.spectra(sd, c.solvers.measures(motion, sd), conditioningOf(motion)), nil
 }
 
 // conditioningOf is what the store keeps of a conditioned motion, nil where it is the
@@ -46,12 +44,12 @@ func conditioningOf(m condition.Conditioned) *db.Conditioning {
 		return nil
 	}
 	return &db.Conditioning{
-		StepS: m.StepS, Samples: len(m.Acceleration), LeadS: m.LeadS, LowCutHz: knownOrNil(m.LowCutHz), HighCutHz: knownOrNil(m.HighCutHz),
+		StepS: m.StepS, Samples: len(m.Acceleration), LeadS: m.LeadS, LowCutHz: knownOrNil(m.LowCutHz), HighCutHz: knownOrNil(m.HighCutHz), LongS: knownOrNil(m.LongS),
 	}
 }
 
 func knownOrNil(x float64) *float64 {
-	if math.IsNaN(x) {
+	if math.IsNaN(x) || math.IsInf(x, 0) {
 		return nil
 	}
 	return &x

@@ -70,7 +70,7 @@ func componentOf(s solved, role string) db.Component {
 		Role: role, Axis: axes[c.Orientation.Axis], Label: c.Orientation.Label, Rank: c.Orientation.Order,
 		AzimuthDeg: pointer(c.Orientation.AzimuthDeg), Channel: c.ChannelCode, Start: c.Start, StepS: c.StepS, Samples: s.samples, Unit: c.Unit,
 		Processing: string(c.Processing), LowCutHz: pointer(c.LowCutHz), HighCutHz: pointer(c.HighCutHz),
-		HeaderPeak: pointer(c.HeaderPeak), Warnings: c.Warnings, SourceLine: c.Line,
+		HeaderPeak: pointer(c.HeaderPeak), Warnings: c.Warnings, Findings: s.findings, SourceLine: c.Line,
 	}
 }
 

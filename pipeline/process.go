@@ -10,6 +10,8 @@ import (
 	"swaybook/db"
 	"swaybook/ingest"
 	"swaybook/pipeline/condition"
+	"swaybook/pipeline/quality"
+	"swaybook/pipeline/signal"
 )
 
 // Outcome is what became of a file.
@@ -50,6 +52,7 @@ type solved struct {
 	data     []byte // compressed samples
 	digest   string
 	spectra  db.Spectra
+	findings []db.Finding
 }
 
 // reader turns files into results. It is shared by the workers.
@@ -180,9 +183,21 @@ func (r *reader) solve(s *solved, c ingest.Channel) error {
 	if err != nil {
 		return err
 	}
-	s.channel, s.samples, s.spectra = withoutSamples(c), len(c.Acceleration), spectra
+	s.channel, s.samples, s.spectra, s.findings = withoutSamples(c), len(c.Acceleration), spectra, findingsOf(&c)
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
 	return nil
+}
+
+// findingsOf are what reading found and what the samples show.
+func findingsOf(c *ingest.Channel) []db.Finding {
+	var out []db.Finding
+	for _, f := range c.Findings {
+		out = append(out, db.Finding(f))
+	}
+	for _, f := range quality.Assess(c.Acceleration, c.StepS, signal.Arrival(c.Acceleration, c.StepS)) {
+		out = append(out, db.Finding(f))
+	}
+	return out
 }
 
 func numberOrNaN(n ingest.Number) float64 {

@@ -139,7 +139,7 @@ func (c *computer) rotate(betweenDeg float64, first, second db.StoredMotion) (me
 	if !areFinite(append(slices.Clone(sd100), peaks100.PGA, peaks100.PGV, peaks100.PGD)) {
 		return median, maximum, errors.New("the motion is beyond the range of numbers")
 	}
-	return c.solvers.spectra(sd50, peaks50, nil), c.solvers.spectra(sd100, peaks100, nil), nil
+	return c.solvers.spectra(sd50, peakMeasures(peaks50), nil), c.solvers.spectra(sd100, peakMeasures(peaks100), nil), nil
 }
 
 // solved is a stored component, conditioned, with its stored SD.

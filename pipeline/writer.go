@@ -186,6 +186,11 @@ func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, path string, s sol
 	}
 	c := componentOf(s, p.role)
 	c.SourceID = sourceID
+	twins, err := tx.FlagTwins(ctx, record.ID, s.digest)
+	if err != nil {
+		return err
+	}
+	c.Findings = append(c.Findings, twins...)
 	return tx.AddComponent(ctx, record.ID, c, s.data, s.digest, w.run.generation.ID, s.spectra)
 }
 

@@ -13,28 +13,39 @@ import (
 // NaN, or noYear; an unknown string is empty. The type has no methods, since an
 // expression could call them.
 type attributes struct {
-	Magnitude        float64 `expr:"magnitude"`
-	DistanceKM       float64 `expr:"distance_km"`
-	EpicentralKM     float64 `expr:"epicentral_km"`
-	HypocentralKM    float64 `expr:"hypocentral_km"`
-	RuptureKM        float64 `expr:"rupture_km"`
-	JoynerBooreKM    float64 `expr:"jb_km"`
-	Vs30MPS          float64 `expr:"vs30_m_s"`
-	DepthKM          float64 `expr:"depth_km"`
-	EventLatitude    float64 `expr:"event_latitude"`
-	EventLongitude   float64 `expr:"event_longitude"`
-	StationLatitude  float64 `expr:"station_latitude"`
-	StationLongitude float64 `expr:"station_longitude"`
-	StepS            float64 `expr:"dt_s"`
-	Samples          int     `expr:"samples"`
-	DurationS        float64 `expr:"duration_s"`
-	PGA              float64 `expr:"pga_g"`
-	PGV              float64 `expr:"pgv_m_s"`
-	PGD              float64 `expr:"pgd_m"`
-	AzimuthDeg       float64 `expr:"azimuth_deg"`
-	LowCutHz         float64 `expr:"low_cut_hz"`
-	HighCutHz        float64 `expr:"high_cut_hz"`
-	Year             int     `expr:"year"`
+	Magnitude         float64 `expr:"magnitude"`
+	DistanceKM        float64 `expr:"distance_km"`
+	EpicentralKM      float64 `expr:"epicentral_km"`
+	HypocentralKM     float64 `expr:"hypocentral_km"`
+	RuptureKM         float64 `expr:"rupture_km"`
+	JoynerBooreKM     float64 `expr:"jb_km"`
+	Vs30MPS           float64 `expr:"vs30_m_s"`
+	DepthKM           float64 `expr:"depth_km"`
+	EventLatitude     float64 `expr:"event_latitude"`
+	EventLongitude    float64 `expr:"event_longitude"`
+	StationLatitude   float64 `expr:"station_latitude"`
+	StationLongitude  float64 `expr:"station_longitude"`
+	StepS             float64 `expr:"dt_s"`
+	Samples           int     `expr:"samples"`
+	DurationS         float64 `expr:"duration_s"`
+	PGA               float64 `expr:"pga_g"`
+	PGV               float64 `expr:"pgv_m_s"`
+	PGD               float64 `expr:"pgd_m"`
+	Arias             float64 `expr:"arias_m_s"`
+	CAV               float64 `expr:"cav_m_s"`
+	StandardisedCAV   float64 `expr:"cav_standardised_m_s"`
+	Significant575    float64 `expr:"d5_75_s"`
+	Significant595    float64 `expr:"d5_95_s"`
+	Bracketed         float64 `expr:"bracketed_s"`
+	RMS               float64 `expr:"rms_m_s2"`
+	MeanPeriod        float64 `expr:"mean_period_s"`
+	SpectrumIntensity float64 `expr:"spectrum_intensity_m"`
+	AzimuthDeg        float64 `expr:"azimuth_deg"`
+	LowCutHz          float64 `expr:"low_cut_hz"`
+	HighCutHz         float64 `expr:"high_cut_hz"`
+	UsableFromS       float64 `expr:"usable_from_s"`
+	UsableToS         float64 `expr:"usable_to_s"`
+	Year              int     `expr:"year"`
 
 	Record        string `expr:"record"`
 	Event         string `expr:"event"`
@@ -51,6 +62,8 @@ type attributes struct {
 	Processing    string `expr:"processing"`
 	Source        string `expr:"source"`
 	Warnings      string `expr:"warnings"`
+
+	Quality qualityFlags `expr:"quality"`
 
 	SiteClassEN1998 string `expr:"site_class_en1998"`
 	SiteClassNEHRP  string `expr:"site_class_nehrp"`
@@ -83,9 +96,20 @@ var numbers = []struct {
 	{"pga_g", func(a *attributes) bool { return isKnown(a.PGA) }},
 	{"pgv_m_s", func(a *attributes) bool { return isKnown(a.PGV) }},
 	{"pgd_m", func(a *attributes) bool { return isKnown(a.PGD) }},
+	{"arias_m_s", func(a *attributes) bool { return isKnown(a.Arias) }},
+	{"cav_m_s", func(a *attributes) bool { return isKnown(a.CAV) }},
+	{"cav_standardised_m_s", func(a *attributes) bool { return isKnown(a.StandardisedCAV) }},
+	{"d5_75_s", func(a *attributes) bool { return isKnown(a.Significant575) }},
+	{"d5_95_s", func(a *attributes) bool { return isKnown(a.Significant595) }},
+	{"bracketed_s", func(a *attributes) bool { return isKnown(a.Bracketed) }},
+	{"rms_m_s2", func(a *attributes) bool { return isKnown(a.RMS) }},
+	{"mean_period_s", func(a *attributes) bool { return isKnown(a.MeanPeriod) }},
+	{"spectrum_intensity_m", func(a *attributes) bool { return isKnown(a.SpectrumIntensity) }},
 	{"azimuth_deg", func(a *attributes) bool { return isKnown(a.AzimuthDeg) }},
 	{"low_cut_hz", func(a *attributes) bool { return isKnown(a.LowCutHz) }},
 	{"high_cut_hz", func(a *attributes) bool { return isKnown(a.HighCutHz) }},
+	{"usable_from_s", func(a *attributes) bool { return isKnown(a.UsableFromS) }},
+	{"usable_to_s", func(a *attributes) bool { return isKnown(a.UsableToS) }},
 	{"year", func(a *attributes) bool { return a.Year != noYear }},
 }
 
@@ -103,7 +127,9 @@ var attributeDetails = map[string]db.Details{
 	"year": db.DetailRecord, "station": db.DetailRecord, "network": db.DetailRecord, "station_name": db.DetailRecord, "site_class_en1998": db.DetailRecord, "site_class_nehrp": db.DetailRecord, "instrument": db.DetailRecord,
 	"dt_s": db.DetailMotion, "axis": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
 	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
-	"low_cut_hz": db.DetailChannel, "high_cut_hz": db.DetailChannel,
+	"arias_m_s": db.DetailMeasures, "cav_m_s": db.DetailMeasures, "cav_standardised_m_s": db.DetailMeasures, "d5_75_s": db.DetailMeasures, "d5_95_s": db.DetailMeasures, "bracketed_s": db.DetailMeasures, "rms_m_s2": db.DetailMeasures, "mean_period_s": db.DetailMeasures, "spectrum_intensity_m": db.DetailMeasures,
+	"quality":    db.DetailFindings,
+	"low_cut_hz": db.DetailBand, "high_cut_hz": db.DetailBand, "usable_from_s": db.DetailBand, "usable_to_s": db.DetailBand,
 	"format": db.DetailChannel, "processing": db.DetailChannel, "source": db.DetailChannel, "warnings": db.DetailChannel,
 }
 
@@ -113,21 +139,62 @@ func WhereAttributes() string {
 	for i, n := range numbers {
 		names[i] = n.name
 	}
-	return "numbers " + strings.Join(names, ", ") + "; strings " + strings.Join(texts, ", ")
+	findings := make([]string, len(flags))
+	for i, f := range flags {
+		findings[i] = "quality." + f.name
+	}
+	return "numbers " + strings.Join(names, ", ") + "; strings " + strings.Join(texts, ", ") + "; true or false " + strings.Join(findings, ", ")
 }
 
 func isKnown(x float64) bool { return !math.IsNaN(x) }
 
 // componentAttributes describes one stored component.
 func componentAttributes(c *db.HeldComponent) attributes {
+	k := conditioned(c)
+	fromS, toS := k.UsableBand()
 	a := attributes{
+		UsableFromS: fromS, UsableToS: toS, Quality: qualityOf(c),
 		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
 		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
-		AzimuthDeg: orNaN(c.AzimuthDeg), LowCutHz: orNaN(c.LowCutHz), HighCutHz: orNaN(c.HighCutHz),
+		AzimuthDeg: orNaN(c.AzimuthDeg), LowCutHz: k.LowCutHz, HighCutHz: k.HighCutHz,
 		Component: c.Role, Axis: c.Axis, Format: c.SourceFormat, Processing: c.Processing, Source: c.SourcePath, Warnings: strings.Join(c.Warnings, "; "),
+	}
+	for i, name := range intensities {
+		*intensitiesOf(&a)[i] = math.NaN()
+		if value, ok := c.Measures[name]; ok {
+			*intensitiesOf(&a)[i] = value
+		}
 	}
 	describeRecord(&a, c.Record)
 	return a
+}
+
+// intensities are the measures beside the peaks, in the order of intensitiesOf; an
+// attribute has the name of its measure.
+var intensities = []string{
+	db.MeasureArias,
+	db.MeasureCAV,
+	db.MeasureStandardisedCAV,
+	db.MeasureSignificant575,
+	db.MeasureSignificant595,
+	db.MeasureBracketed,
+	db.MeasureRMS,
+	db.MeasureMeanPeriod,
+	db.MeasureSpectrumIntensity,
+}
+
+func intensitiesOf(a *attributes) []*float64 {
+	return []*float64{
+		&a.Arias,
+		&a.CAV,
+		&a.StandardisedCAV,
+		&a.Significant575,
+		&a.Significant595,
+		&a.Bracketed,
+		&a.RMS,
+		&a.MeanPeriod,
+		&a.SpectrumIntensity,
+	}
 }
 
 // duration is the time from the first sample to the last in s.
@@ -196,7 +263,7 @@ func year(r *db.Record) int {
 func pairAttributes(m *motion) attributes {
 	component := Component(m.role)
 	a, b := componentAttributes(m.members[0]), componentAttributes(m.members[1])
-	a.Component, a.AzimuthDeg = m.role, math.NaN()
+	a.Component, a.AzimuthDeg, a.Quality = m.role, math.NaN(), qualityOf(m.members...)
 	switch {
 	case m.rotated != nil:
 		a.PGA, a.PGV, a.PGD = m.rotated.PGA/StandardGravity, m.rotated.PGV, m.rotated.PGD
@@ -206,12 +273,25 @@ func pairAttributes(m *motion) attributes {
 		combine := combiner(component)
 		a.PGA, a.PGV, a.PGD = combine(a.PGA, b.PGA), combine(a.PGV, b.PGV), combine(a.PGD, b.PGD)
 	}
+	for i, value := range intensitiesOf(&a) {
+		*value = strength(component)(*value, *intensitiesOf(&b)[i])
+	}
 	// The builtins give NaN where either is NaN.
 	a.StepS, a.Samples, a.DurationS = max(a.StepS, b.StepS), min(a.Samples, b.Samples), min(a.DurationS, b.DurationS)
 	a.LowCutHz, a.HighCutHz = max(a.LowCutHz, b.LowCutHz), min(a.HighCutHz, b.HighCutHz)
+	a.UsableFromS, a.UsableToS = max(a.UsableFromS, b.UsableFromS), min(a.UsableToS, b.UsableToS)
 	a.Axis, a.Format, a.Processing, a.Source = both(a.Axis, b.Axis), both(a.Format, b.Format), both(a.Processing, b.Processing), both(a.Source, b.Source)
 	a.Warnings = both(a.Warnings, b.Warnings)
 	return a
+}
+
+// strength gives a measure of a pair from those of its components: the larger of both for
+// what is a maximum over directions, else the geometric mean.
+func strength(component Component) func(a, b float64) float64 {
+	if component == ComponentRotD100 {
+		component = ComponentLarger
+	}
+	return combiner(component)
 }
 
 // combiner gives the ordinate of a pair from those of its components. It is

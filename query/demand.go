@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"math"
 	"math/big"
 	"slices"
 
@@ -110,13 +111,13 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 	if err != nil {
 		return nil, err
 	}
-	loaded, err := s.load(ctx, picked, band)
+	at := slices.Index(band, q.Structure.PeriodS)
+	loaded, err := s.load(ctx, picked, band, at)
 	if err != nil {
 		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
 	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles}
-	at := slices.Index(band, q.Structure.PeriodS)
 	r := newReducer(picked.motions, q.Percentiles)
 	answer.Quantities = q.reduce(r, loaded, at, at+1)
 	if q.BandWidth > 0 {
@@ -171,12 +172,12 @@ func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantit
 			w := omega(o.periodsS[p])
 			for k, sd := range o.at(p) {
 				x := quantity.of(&q.Structure, sd, w)
-				if p == from || x > values[k] {
-					values[k] = x
+				if p == from || x > values[k] || math.IsNaN(x) {
+					values[k] = x // what is unusable at one period has no envelope
 				}
 			}
 		}
-		if isDefined(values[0]) {
+		if slices.ContainsFunc(values, isDefined) {
 			reduction := r.reduce(values)
 			out[i].Reduction = &reduction
 		}

@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"math"
 	"slices"
 	"time"
 
@@ -16,52 +17,74 @@ type RecordsQuestion struct {
 // RecordRow describes one held component, or a pair over all directions. Nil
 // fields are unknown.
 type RecordRow struct {
-	Record           string   `json:"record"`
-	Event            *string  `json:"event"`
-	EventName        *string  `json:"event_name"`
-	Origin           *string  `json:"origin"` // UTC, RFC 3339
-	Magnitude        *float64 `json:"magnitude"`
-	MagnitudeType    *string  `json:"magnitude_type"`
-	DepthKM          *float64 `json:"depth_km"`
-	EventLatitude    *float64 `json:"event_latitude"`
-	EventLongitude   *float64 `json:"event_longitude"`
-	Network          *string  `json:"network"`
-	Station          *string  `json:"station"`
-	StationName      *string  `json:"station_name"`
-	StationLatitude  *float64 `json:"station_latitude"`
-	StationLongitude *float64 `json:"station_longitude"`
-	Vs30MPS          *float64 `json:"vs30_m_s"`
-	SiteClassEN1998  *string  `json:"site_class_en1998"`
-	SiteClassNEHRP   *string  `json:"site_class_nehrp"`
-	DistanceKM       *float64 `json:"distance_km"` // the best of the following, see db.Distances
-	EpicentralKM     *float64 `json:"epicentral_km"`
-	HypocentralKM    *float64 `json:"hypocentral_km"`
-	RuptureKM        *float64 `json:"rupture_km"`
-	JoynerBooreKM    *float64 `json:"jb_km"`
-	Instrument       *string  `json:"instrument"`
-	Siting           string   `json:"siting"`
-	Component        string   `json:"component"`
-	Channel          *string  `json:"channel"`
-	Axis             string   `json:"axis"` // "horizontal", "vertical" or "unknown"
-	AzimuthDeg       *float64 `json:"azimuth_deg"`
-	Start            *string  `json:"start"` // UTC, RFC 3339
-	StepS            float64  `json:"dt_s"`
-	Samples          int      `json:"samples"`
-	DurationS        float64  `json:"duration_s"` // first sample to last
-	PGA              float64  `json:"pga_g"`
-	PGV              float64  `json:"pgv_m_s"`
-	PGD              float64  `json:"pgd_m"`
-	Unit             *string  `json:"unit"` // of the file's numbers
-	Processing       *string  `json:"processing"`
-	LowCutHz         *float64 `json:"low_cut_hz"`
-	HighCutHz        *float64 `json:"high_cut_hz"`
-	Format           string   `json:"format"`
-	Source           string   `json:"source"`
-	Line             *int     `json:"line"`
-	SHA256           string   `json:"sha256"`
-	Warnings         []string `json:"warnings"`
+	Record            string   `json:"record"`
+	Event             *string  `json:"event"`
+	EventName         *string  `json:"event_name"`
+	Origin            *string  `json:"origin"` // UTC, RFC 3339
+	Magnitude         *float64 `json:"magnitude"`
+	MagnitudeType     *string  `json:"magnitude_type"`
+	DepthKM           *float64 `json:"depth_km"`
+	EventLatitude     *float64 `json:"event_latitude"`
+	EventLongitude    *float64 `json:"event_longitude"`
+	Network           *string  `json:"network"`
+	Station           *string  `json:"station"`
+	StationName       *string  `json:"station_name"`
+	StationLatitude   *float64 `json:"station_latitude"`
+	StationLongitude  *float64 `json:"station_longitude"`
+	Vs30MPS           *float64 `json:"vs30_m_s"`
+	SiteClassEN1998   *string  `json:"site_class_en1998"`
+	SiteClassNEHRP    *string  `json:"site_class_nehrp"`
+	DistanceKM        *float64 `json:"distance_km"` // the best of the following, see db.Distances
+	EpicentralKM      *float64 `json:"epicentral_km"`
+	HypocentralKM     *float64 `json:"hypocentral_km"`
+	RuptureKM         *float64 `json:"rupture_km"`
+	JoynerBooreKM     *float64 `json:"jb_km"`
+	Instrument        *string  `json:"instrument"`
+	Siting            string   `json:"siting"`
+	Component         string   `json:"component"`
+	Channel           *string  `json:"channel"`
+	Axis              string   `json:"axis"` // "horizontal", "vertical" or "unknown"
+	AzimuthDeg        *float64 `json:"azimuth_deg"`
+	Start             *string  `json:"start"` // UTC, RFC 3339
+	StepS             float64  `json:"dt_s"`
+	Samples           int      `json:"samples"`
+	DurationS         float64  `json:"duration_s"` // first sample to last
+	PGA               float64  `json:"pga_g"`
+	PGV               float64  `json:"pgv_m_s"`
+	PGD               float64  `json:"pgd_m"`
+	Arias             *float64 `json:"arias_m_s"`
+	CAV               *float64 `json:"cav_m_s"`
+	StandardisedCAV   *float64 `json:"cav_standardised_m_s"`
+	Significant575    *float64 `json:"d5_75_s"`
+	Significant595    *float64 `json:"d5_95_s"`
+	Bracketed         *float64 `json:"bracketed_s"`
+	RMS               *float64 `json:"rms_m_s2"`
+	MeanPeriod        *float64 `json:"mean_period_s"`
+	SpectrumIntensity *float64 `json:"spectrum_intensity_m"`
+	Unit              *string  `json:"unit"` // of the file's numbers
+	Processing        *string  `json:"processing"`
+	LowCutHz          *float64 `json:"low_cut_hz"`
+	HighCutHz         *float64 `json:"high_cut_hz"`
+	UsableFromS       *float64 `json:"usable_from_s"`
+	UsableToS         *float64 `json:"usable_to_s"` // null: no filter is known to end it
+	Format            string   `json:"format"`
+	Source            string   `json:"source"`
+	Line              *int     `json:"line"`
+	SHA256            string   `json:"sha256"`
+	Warnings          []string `json:"warnings"`
+	// Quality is what was found of the component as it was delivered.
+	Quality []FindingRow `json:"quality"`
 	// DuplicateOf is the record from which statistics take the motion instead.
 	DuplicateOf *string `json:"duplicate_of"`
+}
+
+// FindingRow is one thing that is wrong with a component: the value measured and the bound
+// that it is beyond, of a share without unit, else in s.
+type FindingRow struct {
+	Flag  string  `json:"flag"`
+	Value float64 `json:"value"`
+	Bound float64 `json:"bound"`
+	Words string  `json:"words"`
 }
 
 // RecordsAnswer lists components in the order of record code and role.
@@ -95,11 +118,23 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 
 func rowOf(m *motion) RecordRow {
 	row := recordRow(m.members[0])
+	a := m.attributes()
+	for i, into := range row.intensities() {
+		*into = knownOrNull(*intensitiesOf(&a)[i])
+	}
 	row.DuplicateOf = orNull(m.versionOf)
 	if m.isRotated() {
 		row.takePair(m)
 	}
 	return row
+}
+
+// intensities are the fields of the measures beside the peaks, in the order of
+// intensitiesOf.
+func (r *RecordRow) intensities() []**float64 {
+	return []**float64{
+		&r.Arias, &r.CAV, &r.StandardisedCAV, &r.Significant575, &r.Significant595, &r.Bracketed, &r.RMS, &r.MeanPeriod, &r.SpectrumIntensity,
+	}
 }
 
 // takePair makes the row of a pair's first component that of the pair: numbers
@@ -112,14 +147,27 @@ func (r *RecordRow) takePair(m *motion) {
 	r.StepS, r.Samples, r.DurationS = a.StepS, max(r.Samples, second.Samples), max(r.DurationS, second.DurationS)
 	r.PGA, r.PGV, r.PGD = a.PGA, a.PGV, a.PGD
 	r.LowCutHz, r.HighCutHz = knownOrNull(a.LowCutHz), knownOrNull(a.HighCutHz)
+	r.UsableFromS, r.UsableToS = &a.UsableFromS, finiteOrNull(a.UsableToS)
 	r.Channel, r.Unit = orNull(both(orEmpty(r.Channel), orEmpty(second.Channel))), orNull(both(orEmpty(r.Unit), orEmpty(second.Unit)))
 	r.Processing, r.Format, r.Source = orNull(a.Processing), a.Format, a.Source
 	r.SHA256 = both(r.SHA256, second.SHA256)
+	for _, f := range second.Quality {
+		if !slices.Contains(r.Quality, f) {
+			r.Quality = append(r.Quality, f)
+		}
+	}
 	for _, w := range second.Warnings {
 		if !slices.Contains(r.Warnings, w) {
 			r.Warnings = append(r.Warnings, w)
 		}
 	}
+}
+
+func finiteOrNull(x float64) *float64 {
+	if math.IsInf(x, 0) {
+		return nil
+	}
+	return knownOrNull(x)
 }
 
 func knownOrNull(x float64) *float64 {
@@ -138,6 +186,8 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		station = &db.Station{}
 	}
 	d := &c.Record.Distances
+	k := conditioned(c)
+	fromS, toS := k.UsableBand()
 	en1998, nehrp := siteClasses(station)
 	return RecordRow{
 		Record: c.Record.Code,
@@ -152,10 +202,19 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		Component: c.Role, Channel: orNull(c.Channel), Axis: c.Axis, AzimuthDeg: c.AzimuthDeg, Start: timeOrNull(startOf(c)),
 		StepS: c.StepS, Samples: c.Samples, DurationS: duration(c),
 		PGA: c.PGA / StandardGravity, PGV: c.PGV, PGD: c.PGD,
-		Unit: orNull(c.Unit), Processing: orNull(c.Processing), LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz,
+		Unit: orNull(c.Unit), Processing: orNull(c.Processing), LowCutHz: knownOrNull(k.LowCutHz), HighCutHz: knownOrNull(k.HighCutHz),
+		UsableFromS: &fromS, UsableToS: finiteOrNull(toS),
 		Format: c.SourceFormat, Source: c.SourcePath, Line: lineOrNull(c.SourceLine), SHA256: c.SourceSHA256,
-		Warnings: append([]string{}, c.Warnings...),
+		Warnings: append([]string{}, c.Warnings...), Quality: findingRows(c.Findings),
 	}
+}
+
+func findingRows(found []db.Finding) []FindingRow {
+	rows := make([]FindingRow, len(found))
+	for i, f := range found {
+		rows[i] = FindingRow(f)
+	}
+	return rows
 }
 
 // startOf is the time of the component's first sample, or of its record's where

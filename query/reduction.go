@@ -10,8 +10,9 @@ import (
 )
 
 // Reduction is the statistics of one quantity over the motions of a selection,
-// in the quantity's unit; LogStd has none. What is undefined is NaN: LogStd of
-// one motion, LogMean and LogStd where a value is zero.
+// in the quantity's unit; LogStd has none. Motions whose usable band does not reach the
+// period do not count. What is undefined is NaN: everything of no motion, percentiles of
+// fewer than three, LogStd of one, LogMean and LogStd where a value is zero.
 type Reduction struct {
 	Count       int
 	Mean        float64
@@ -32,27 +33,41 @@ func DefaultPercentiles() []float64 { return []float64{16, 50, 84} }
 // reducer reduces samples one after another in the same space. It is for one
 // goroutine.
 type reducer struct {
-	motions         []motion
-	percents        []float64
-	sorted, scratch []float64
+	motions                []motion
+	percents               []float64
+	known, sorted, scratch []float64
 }
 
 func newReducer(motions []motion, percents []float64) *reducer {
 	n := len(motions)
-	return &reducer{motions: motions, percents: percents, sorted: make([]float64, n), scratch: make([]float64, n)}
+	return &reducer{motions: motions, percents: percents, known: make([]float64, 0, n), sorted: make([]float64, n), scratch: make([]float64, n)}
 }
 
-// reduce takes one value a motion, in the order of motions.
+// leastForPercentiles is the number of spectra below which a percentile is not defined:
+// of one or two it would be an opinion about how distributions look.
+const leastForPercentiles = 3
+
+// reduce takes one value a motion, in the order of motions, NaN for those that have none.
 func (r *reducer) reduce(values []float64) Reduction {
-	copy(r.sorted, values)
-	stats.Sort(r.sorted, r.scratch)
-	n := len(values)
-	out := Reduction{
-		Count: n, Mean: stats.Mean(values),
-		Percentiles: stats.Percentiles(nil, r.sorted, r.percents),
-		Min:         r.sorted[0], Max: r.sorted[n-1],
+	known := r.known[:0]
+	for _, x := range values {
+		if !math.IsNaN(x) {
+			known = append(known, x)
+		}
 	}
-	out.LogMean, out.LogStd = stats.LogMoments(r.scratch, values)
+	n := len(known)
+	nan := math.NaN()
+	if n == 0 {
+		return Reduction{Mean: nan, LogMean: nan, LogStd: nan, Percentiles: slices.Repeat([]float64{nan}, len(r.percents)), Min: nan, Max: nan}
+	}
+	sorted, scratch := r.sorted[:n], r.scratch[:n]
+	copy(sorted, known)
+	stats.Sort(sorted, scratch)
+	out := Reduction{Count: n, Mean: stats.Mean(known), Percentiles: stats.Percentiles(nil, sorted, r.percents), Min: sorted[0], Max: sorted[n-1]}
+	if n < leastForPercentiles {
+		out.Percentiles = slices.Repeat([]float64{nan}, len(r.percents))
+	}
+	out.LogMean, out.LogStd = stats.LogMoments(scratch, known)
 	if governing := slices.Index(values, out.Max); governing >= 0 {
 		m := &r.motions[governing]
 		out.Governing, out.GoverningComponent = m.record(), m.role

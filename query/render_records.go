@@ -58,7 +58,9 @@ var recordsHeader = []string{
 	"network", "station", "station_name", "station_latitude", "station_longitude", "vs30_m_s", "site_class_en1998", "site_class_nehrp",
 	"distance_km", "epicentral_km", "hypocentral_km", "rupture_km", "jb_km",
 	"instrument", "siting", "component", "channel", "axis", "azimuth_deg", "start", "dt_s", "samples", "duration_s",
-	"pga_g", "pgv_m_s", "pgd_m", "unit", "processing", "low_cut_hz", "high_cut_hz", "format", "source", "line", "sha256", "warnings", "duplicate_of",
+	"pga_g", "pgv_m_s", "pgd_m",
+	"arias_m_s", "cav_m_s", "cav_standardised_m_s", "d5_75_s", "d5_95_s", "bracketed_s", "rms_m_s2", "mean_period_s", "spectrum_intensity_m",
+	"unit", "processing", "low_cut_hz", "high_cut_hz", "usable_from_s", "usable_to_s", "format", "source", "line", "sha256", "warnings", "quality", "duplicate_of",
 }
 
 func (a *RecordsAnswer) csv() []byte {
@@ -96,11 +98,25 @@ func (r *RecordRow) csv(l *csvLine) {
 	for _, x := range []float64{r.DurationS, r.PGA, r.PGV, r.PGD} {
 		l.number(x)
 	}
+	for _, x := range r.intensities() {
+		l.number(orNaN(*x))
+	}
 	l.words(orEmpty(r.Unit), orEmpty(r.Processing))
 	l.number(orNaN(r.LowCutHz))
 	l.number(orNaN(r.HighCutHz))
-	l.words(r.Format, r.Source, lineText(r.Line), r.SHA256, strings.Join(r.Warnings, "; "), orEmpty(r.DuplicateOf))
+	l.number(orNaN(r.UsableFromS))
+	l.number(orNaN(r.UsableToS))
+	l.words(r.Format, r.Source, lineText(r.Line), r.SHA256, strings.Join(r.Warnings, "; "), r.qualityWords(), orEmpty(r.DuplicateOf))
 	l.end()
+}
+
+// qualityWords are the findings, each as "flag: sentence", joined with "; ".
+func (r *RecordRow) qualityWords() string {
+	words := make([]string, len(r.Quality))
+	for i, f := range r.Quality {
+		words[i] = f.Flag + ": " + f.Words
+	}
+	return strings.Join(words, "; ")
 }
 
 // Write renders the list. The error is a UsageError for an unknown format and

@@ -177,7 +177,7 @@ func TestRotatedRows(t *testing.T) {
 		t.Fatal(err)
 	}
 	r := a.Rows[0]
-	if r.AzimuthDeg != nil || r.Line != nil || r.Source != "invented/R1.h1 + invented/R1.h2" || !near(r.PGA, 0.04) || !near(r.PGD, 0.04) || *r.LowCutHz != 0.1 || r.HighCutHz != nil {
+	if r.AzimuthDeg != nil || r.Line != nil || r.Source != "invented/R1.h1 + invented/R1.h2" || !near(r.PGA, 0.04) || !near(r.PGD, 0.04) || *r.LowCutHz != 0.05 || r.HighCutHz != nil {
 		t.Errorf("row %+v", r)
 	}
 }

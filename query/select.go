@@ -32,6 +32,8 @@ type picked struct {
 	held    int
 	leftOut map[string]int // records by reason
 	hint    string         // where nothing is left
+	// ignoresBand says that ordinates outside the usable band count.
+	ignoresBand bool
 }
 
 // pick carries out a selection whose defaults are filled in. Of the components
@@ -50,12 +52,18 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if s.Component.IsRotated() || s.Component == ComponentAll || !s.IncludeUnknownDirections {
 		details |= db.DetailMotion // by which pairs are rotated, and what is horizontal
 	}
+	if !s.IgnoreUsableBand {
+		details |= db.DetailBand
+	}
+	if s.Screen != ScreenNone {
+		details |= db.DetailFindings | db.DetailBand // by which what a recipe mended is known
+	}
 	held, err := snapshot.Components(ctx, details)
 	if err != nil {
 		return nil, err
 	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, details: details}
-	p.hint, p.leftOut = p.hintOf(), map[string]int{}
+	p.hint, p.leftOut, p.ignoresBand = p.hintOf(), map[string]int{}, s.IgnoreUsableBand
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
 	if err := p.findRotated(ctx, snapshot, details, held); err != nil {
@@ -170,6 +178,8 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return lacking, false, nil
 	case !p.selection.IncludeUnknownDirections && m.hasUnknownDirection():
 		return reasonUnknownDirection, false, nil
+	case p.selection.Screen.screened(m) != "":
+		return "screened out: " + p.selection.Screen.screened(m), false, nil
 	case p.details&db.DetailPeaks != 0 && m.hasDamagedPeaks():
 		return reasonDamaged, false, nil
 	case unknown != "":
@@ -277,6 +287,16 @@ func (p *picked) finish() error {
 		return &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: r.LeftOut, Hint: p.hint}
 	}
 	return nil
+}
+
+// noteBand says what became of ordinates outside the usable band.
+func (p *picked) noteBand(partly int) {
+	switch {
+	case p.ignoresBand:
+		p.report.Notes = append(p.report.Notes, "usable bands ignored: ordinates count at periods that filters and sampling have emptied")
+	case partly > 0:
+		p.report.Notes = append(p.report.Notes, countOf(partly, "spectrum counts", "spectra count")+" at a part of the periods only: the usable band")
+	}
 }
 
 // byRecord yields the motions of one record after another.

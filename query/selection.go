@@ -177,11 +177,18 @@ type Selection struct {
 	// IncludeUnknownDirections takes components too of which nobody says whether they
 	// are horizontal; lists and export do always.
 	IncludeUnknownDirections bool
+	// IgnoreUsableBand counts ordinates too at periods at which the motion's filters and
+	// sampling leave nothing to believe; lists and export do always.
+	IgnoreUsableBand bool
+	// Screen leaves out motions for what was found of them; ScreenNormal by default, in
+	// lists and export ScreenNone.
+	Screen Screen
 }
 
 // ofEverything is s for lists and export, which show what statistics leave out.
 func (s Selection) ofEverything() Selection {
-	s.IncludeDuplicates, s.IncludeUnknownDirections = true, true
+	s.IncludeDuplicates, s.IncludeUnknownDirections, s.IgnoreUsableBand = true, true, true
+	s.Screen = ScreenNone
 	return s
 }
 
@@ -196,7 +203,11 @@ func (s Selection) withDefaults(component Component, siting Siting, accepted []C
 	if err := checkComponent(s.Component, accepted); err != nil {
 		return s, err
 	}
-	_, err := s.Siting.taken()
+	var err error
+	if s.Screen, err = ParseScreen(string(s.Screen)); err != nil {
+		return s, err
+	}
+	_, err = s.Siting.taken()
 	return s, err
 }
 

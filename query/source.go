@@ -50,14 +50,28 @@ func (s *source) details(periodsS []float64) db.Details {
 // load returns the SD of the motions at the periods: read from the store where
 // damping and period are on its grid, computed from the stored samples
 // otherwise, and where the store lacks the spectrum of a rotated pair. What it
-// cannot give is left out of the selection. The error is an EmptyError where that
-// is all.
-func (s *source) load(ctx context.Context, p *picked, periodsS []float64) (*ordinates, error) {
+// cannot give is left out of the selection, and so is what lies outside the usable band
+// at every period, or at that of position must where this is not negative; single
+// ordinates outside are NaN. The error is an EmptyError where nothing is left.
+func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must int) (*ordinates, error) {
 	o, unfit, err := s.loadMotions(ctx, p.motions, periodsS)
 	if err != nil {
 		return nil, err
 	}
-	return o.without(unfit), p.leaveOut(unfit)
+	partly := 0
+	if !p.ignoresBand {
+		var without map[int]string
+		without, partly = o.keepUsable(p.motions, must)
+		for i, reason := range without {
+			if _, isOut := unfit[i]; !isOut {
+				unfit[i] = reason
+			}
+		}
+	}
+	o = o.without(unfit)
+	err = p.leaveOut(unfit)
+	p.noteBand(partly)
+	return o, err
 }
 
 // loadMotions returns beside the SD of the motions the positions of those whose SD

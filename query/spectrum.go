@@ -109,7 +109,7 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	if err != nil {
 		return nil, err
 	}
-	loaded, err := s.load(ctx, picked, periods)
+	loaded, err := s.load(ctx, picked, periods, -1)
 	if err != nil {
 		return nil, err
 	}

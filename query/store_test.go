@@ -1,6 +1,7 @@
 package query
 
 import (
+	"cmp"
 	"context"
 	"database/sql"
 	"flag"
@@ -42,10 +43,12 @@ type inventedRecord struct {
 // an answer is made of.
 type inventedComponent struct {
 	role  string
-	level float64 // m
-	stepS float64 // 0: 0.01
-	peak  float64 // m/s² of the pulse; 0: 1
-	axis  string  // "": by the role
+	level float64  // m
+	stepS float64  // 0: 0.01
+	peak  float64  // m/s² of the pulse; 0: 1
+	axis  string   // "": by the role
+	found []string // flags
+	lowHz float64  // corner of the high-pass filter; 0: 0.05
 	// azimuthDeg is that of a horizontal, NaN where unknown; 0: by the role.
 	azimuthDeg float64
 	isShort    bool // ends with the pulse
@@ -160,7 +163,7 @@ func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64
 	data, digest := db.EncodeSamples(samples, 1)
 	component := db.Component{
 		Role: c.role, Axis: "horizontal", Label: c.role, StepS: c.step(), Samples: len(samples), Unit: "m/s2", Processing: "corrected",
-		LowCutHz: ptr(0.1), SourceID: src, SourceLine: 3,
+		LowCutHz: ptr(cmp.Or(c.lowHz, 0.05)), SourceID: src, SourceLine: 3,
 	}
 	switch {
 	case c.role == db.RoleV:
@@ -173,6 +176,9 @@ func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64
 	}
 	if c.axis != "" {
 		component.Axis = c.axis
+	}
+	for _, flag := range c.found {
+		component.Findings = append(component.Findings, db.Finding{Flag: flag, Value: 2, Bound: 1, Words: "invented"})
 	}
 	return tx.AddComponent(ctx, record, component, data, digest, g.ID, c.spectra(g.Grid))
 }

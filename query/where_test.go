@@ -147,7 +147,7 @@ func TestWhereRuntimeMistake(t *testing.T) {
 func TestWhereUnknown(t *testing.T) {
 	a := componentAttributes(&db.HeldComponent{Record: &db.Record{Code: "R", Siting: "ground"}})
 	for _, n := range numbers {
-		if n.name == "dt_s" || n.name == "samples" || n.name == "duration_s" || strings.HasPrefix(n.name, "pg") {
+		if n.name == "dt_s" || n.name == "samples" || n.name == "duration_s" || strings.HasPrefix(n.name, "pg") || strings.HasPrefix(n.name, "usable_") {
 			continue // every component has these
 		}
 		w, err := compileWhere(n.name + " > 0 or true")
@@ -188,11 +188,23 @@ func TestAttributeTables(t *testing.T) {
 	if fields.NumMethod() > 0 || reflect.PointerTo(fields).NumMethod() > 0 {
 		t.Error("attributes has methods, which expressions could call")
 	}
-	for i := range fields.NumField() {
-		f := fields.Field(i)
+	for _, f := range flags {
+		listed["quality."+f.name] = "truth"
+	}
+	for _, f := range reflect.VisibleFields(fields) {
 		name, kind := f.Tag.Get("expr"), "number"
-		if f.Type.Kind() == reflect.String {
+		switch f.Type.Kind() {
+		case reflect.String:
 			kind = "string"
+		case reflect.Struct:
+			for _, inner := range reflect.VisibleFields(f.Type) {
+				key := name + "." + inner.Tag.Get("expr")
+				if listed[key] != "truth" || inner.Type.Kind() != reflect.Bool {
+					t.Errorf("%s: listed as %q", key, listed[key])
+				}
+				delete(listed, key)
+			}
+			continue
 		}
 		if listed[name] != kind {
 			t.Errorf("%s is a %s, listed as %q", name, kind, listed[name])

@@ -129,23 +129,37 @@ func demoIngest(ctx context.Context, o demoOptions, catalogue string, w io.Write
 	return nil
 }
 
-// demoPeriods are a few round periods that fit a screen.
-const demoPeriods = "0.05,0.1,0.2,0.3,0.5,0.7,1,1.5,2,3,5"
+// demoPeriods are a few round periods that fit a screen, and longPeriods those at which
+// records begin to be no longer usable.
+const (
+	demoPeriods = "0.05,0.1,0.2,0.3,0.5,0.7,1,1.5,2,3,5"
+	longPeriods = "3,4,5,6,8"
+)
+
+// demoSpectrum shows a spectrum over the usable bands, or over all periods.
+func demoSpectrum(ctx context.Context, store *db.Store, where, periods string, ignoreBand bool, w io.Writer) error {
+	list, err := query.ParsePeriods(periods)
+	if err != nil {
+		return err
+	}
+	return runSpectrum(ctx, store, spectrumOptions{
+		question: query.SpectrumQuestion{Selection: query.Selection{Where: where, IgnoreUsableBand: ignoreBand}, Damping: 0.05, PeriodsS: list},
+		format:   query.FormatTable, units: query.UnitsSI,
+	}, w, w)
+}
 
 func demoQueries(ctx context.Context, store *db.Store, name string, w io.Writer) error {
 	const near = "magnitude >= 5.5 and distance_km < 60"
 	p := &printer{w: w}
 	p.printf("\n$ swaybook --store %s query spectrum --where '%s' --periods %s\n", name, near, demoPeriods)
-	periods, err := query.ParsePeriods(demoPeriods)
-	if err != nil {
+	if err := demoSpectrum(ctx, store, near, demoPeriods, false, w); err != nil {
 		return err
 	}
-	spectrum := spectrumOptions{
-		question: query.SpectrumQuestion{Selection: query.Selection{Where: near}, Damping: 0.05, PeriodsS: periods},
-		format:   query.FormatTable, units: query.UnitsSI,
-	}
-	if err := runSpectrum(ctx, store, spectrum, w, w); err != nil {
-		return err
+	for _, ignore := range []string{"", " --ignore-usable-band"} {
+		p.printf("\n$ swaybook --store %s query spectrum --where 'magnitude >= 5' --periods %s%s\n", name, longPeriods, ignore)
+		if err := demoSpectrum(ctx, store, "magnitude >= 5", longPeriods, ignore != "", w); err != nil {
+			return err
+		}
 	}
 	for _, s := range demo.Structures() {
 		p.printf("\n%s (invented)\n$ swaybook --store %s query demand%s --where '%s'\n", s.Name, name, demandWords(s), near)

@@ -16,7 +16,7 @@ func exportCommand() *cli.Command {
 	return &cli.Command{
 		Name:        "export",
 		Usage:       "write what the store holds for other programs",
-		Subcommands: []*cli.Command{exportOrdinatesCommand()},
+		Subcommands: []*cli.Command{exportOrdinatesCommand(), exportMeasuresCommand()},
 	}
 }
 
@@ -37,6 +37,29 @@ func exportOrdinatesCommand() *cli.Command {
 			}
 			return withStore(c, func(ctx context.Context, store *db.Store) error {
 				return runExport(ctx, store, q, c.App.Writer, c.App.ErrWriter)
+			})
+		},
+	}
+}
+
+func exportMeasuresCommand() *cli.Command {
+	return &cli.Command{
+		Name:  "measures",
+		Usage: "CSV of the scalar measures: peaks, Arias intensity, cumulative absolute velocity, durations and the like",
+		Description: "A row a component, of the motion as conditioned; everything held is written unless filtered. The names of the columns\n" +
+			"have the units; README.md has the definitions.",
+		Flags: selectionFlags("all, recorded (without pairs over all directions), each, h1, h2, v, rotd50 or rotd100 (default: all)", "as for query spectrum (default: all)"),
+		Action: func(c *cli.Context) error {
+			selection, err := newSelection(c, query.ParseStoredComponent, query.ParseStoredSiting)
+			if err := errors.Join(err, noArguments(c)); err != nil {
+				return err
+			}
+			return withStore(c, func(ctx context.Context, store *db.Store) error {
+				summary, err := query.MeasuresQuestion{Selection: selection}.Write(ctx, store, c.App.Writer)
+				if err == nil {
+					fmt.Fprint(c.App.ErrWriter, summary.Selection.Remarks())
+				}
+				return err
 			})
 		},
 	}

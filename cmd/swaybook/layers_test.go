@@ -14,15 +14,15 @@ import (
 // layers says what a package may import of ours, and why. A package that is
 // not listed may import nothing of ours; tests are free.
 var layers = map[string][]string{
-	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "db", "query"},                                           // wiring, no arithmetic and no SQL
-	"ingest":             {"ingest/miniseed", "ingest/fdsnxml", "ingest/archive"},                                                                // what one reader needs
-	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition"}, // the way in
-	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                // invents files, knows nothing of readers
-	"db":                 {"migrations"},                                                                                                         // the only SQL
-	"pipeline/condition": {"pipeline/signal"},                                                                                                    // the steps of recipes
-	"pipeline/quality":   {"pipeline/signal"},                                                                                                    // means and integrals
-	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                           // the loops behind the solver
-	"query":              {"db", "query/stats", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},             // the way out; never pipeline itself
+	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "db", "query"},                                                                                                        // wiring, no arithmetic and no SQL
+	"ingest":             {"ingest/miniseed", "ingest/fdsnxml", "ingest/archive"},                                                                                                                             // what one reader needs
+	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition", "pipeline/signal", "pipeline/intensity", "pipeline/quality"}, // the way in
+	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                                                                             // invents files, knows nothing of readers
+	"db":                 {"migrations"},                                                                                                                                                                      // the only SQL
+	"pipeline/condition": {"pipeline/signal"},                                                                                                                                                                 // the steps of recipes
+	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                                                 // means and integrals
+	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                                                        // the loops behind the solver
+	"query":              {"db", "query/stats", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                                                                          // the way out; never pipeline itself
 }
 
 // sqlImports are for db alone.

@@ -37,6 +37,8 @@ func statisticsFlags() []cli.Flag {
 	return append(flags,
 		&cli.BoolFlag{Name: "include-duplicates", DisableDefaultText: true, Usage: "take every held version of a motion, not the best one alone"},
 		&cli.BoolFlag{Name: "include-unknown-directions", DisableDefaultText: true, Usage: "take components too of which nothing says whether they are horizontal"},
+		&cli.BoolFlag{Name: "ignore-usable-band", DisableDefaultText: true, Usage: "count ordinates too at periods at which filters and sampling leave nothing to believe"},
+		&cli.StringFlag{Name: "screen", Value: "normal", Usage: "leave out for what was found of quality: strict, normal or none"},
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
 		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
 		&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
@@ -55,6 +57,12 @@ func newSelection(c *cli.Context, component func(string) (query.Component, error
 		return s, err
 	}
 	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
+	s.IgnoreUsableBand = c.Bool("ignore-usable-band")
+	if c.IsSet("screen") {
+		if s.Screen, err = query.ParseScreen(c.String("screen")); err != nil {
+			return s, err
+		}
+	}
 	s.Siting, err = siting(c.String("siting"))
 	return s, err
 }

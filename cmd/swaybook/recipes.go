@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"encoding/json"
 	"errors"
@@ -82,16 +83,28 @@ type stepRow struct {
 
 // recipeRows are the recipes that are built in, those of the store, and those of files.
 func recipeRows(c *cli.Context) ([]recipeRow, error) {
-	recipes := condition.BuiltIn()
-	states := map[string]string{} // by hash
+	var rows []recipeRow
+	add := func(r condition.Recipe, hash, state string) {
+		at := slices.IndexFunc(rows, func(row recipeRow) bool { return row.Hash == hash })
+		if at < 0 {
+			at = len(rows)
+			rows = append(rows, newRecipeRow(r, hash))
+		}
+		rows[at].Store = cmp.Or(rows[at].Store, state)
+	}
+	for _, r := range condition.BuiltIn() {
+		add(r, r.Hash(), "")
+	}
 	if _, err := os.Stat(storePath(c)); err == nil {
 		err := withStore(c, func(ctx context.Context, store *db.Store) error {
 			held, err := store.Recipes(ctx)
 			for _, h := range held {
 				r, errRead := condition.FromCanonical(h.Recipe.Steps)
+				if errors.Is(errRead, condition.ErrOtherVersion) {
+					errRead, r.Explain = nil, "of another version of this program"
+				}
 				err = errors.Join(err, errRead)
-				states[r.Hash()] = h.State
-				recipes = append(recipes, r)
+				add(r, h.Hash, h.State)
 			}
 			return err
 		})
@@ -104,21 +117,17 @@ func recipeRows(c *cli.Context) ([]recipeRow, error) {
 		if err != nil {
 			return nil, err
 		}
-		recipes = append(recipes, r)
-	}
-	var rows []recipeRow
-	for _, r := range recipes {
-		hash := r.Hash()
-		if slices.ContainsFunc(rows, func(row recipeRow) bool { return row.Hash == hash }) {
-			continue
-		}
-		row := recipeRow{Name: r.Name, Hash: hash, Explain: r.Explain, States: r.States, Steps: []stepRow{}, Store: states[hash]}
-		for _, s := range r.Steps {
-			row.Steps = append(row.Steps, stepRow{s, s.Words()})
-		}
-		rows = append(rows, row)
+		add(r, r.Hash(), "")
 	}
 	return rows, nil
+}
+
+func newRecipeRow(r condition.Recipe, hash string) recipeRow {
+	row := recipeRow{Name: r.Name, Hash: hash, Explain: r.Explain, States: r.States, Steps: []stepRow{}}
+	for _, s := range r.Steps {
+		row.Steps = append(row.Steps, stepRow{s, s.Words()})
+	}
+	return row
 }
 
 func writeRecipes(w io.Writer, form query.Format, rows []recipeRow) error {

@@ -1,6 +1,7 @@
 package condition
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"slices"
@@ -31,6 +32,9 @@ type Conditioned struct {
 	LowCutHz, HighCutHz float64
 	// Oversampled is by how much the step is finer than the component's.
 	Oversampled int
+	// LongS is the longest period in s that the recipe's own high-pass filter leaves, +Inf
+	// where it has none.
+	LongS float64
 	// IsChanged is false where the component was left as it was delivered.
 	IsChanged bool
 }
@@ -45,7 +49,7 @@ func (c Conditioned) SamplesBefore(d Conditioned) int {
 // Apply carries out the recipe. The error says which step cannot be done and why.
 func (r Recipe) Apply(c Component) (Conditioned, error) {
 	out := Conditioned{
-		Acceleration: c.Acceleration, StepS: c.StepS, LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz, Oversampled: 1,
+		Acceleration: c.Acceleration, StepS: c.StepS, LowCutHz: c.LowCutHz, HighCutHz: c.HighCutHz, Oversampled: 1, LongS: math.Inf(1),
 	}
 	if !r.AppliesTo(c.State) || len(r.Steps) == 0 {
 		return out, nil
@@ -59,6 +63,9 @@ func (r Recipe) Apply(c Component) (Conditioned, error) {
 		}
 	}
 	w.cutPads()
+	if w.highPassed {
+		w.LongS = cmp.Or(r.LongShare, longShare) / w.LowCutHz
+	}
 	return w.Conditioned, nil
 }
 
@@ -72,6 +79,8 @@ type work struct {
 	noise    ratios
 	hasNoise bool
 	asked    bool
+	// highPassed says that a high-pass filter was applied here.
+	highPassed bool
 }
 
 // cornerOf is the fixed corner, or what choose makes of the noise.
@@ -180,7 +189,7 @@ func (w *work) highPass(s Step) error {
 		return err
 	}
 	w.filter(f)
-	w.LowCutHz = corner
+	w.LowCutHz, w.highPassed = corner, true
 	return nil
 }
 

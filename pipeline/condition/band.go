@@ -13,7 +13,8 @@ const (
 // UsableBand returns the periods in s between which the component's spectrum can be
 // believed:
 //
-//	toS   = 0.8/fl, fl the corner of the high-pass filters, +Inf where none is known;
+//	toS   = 0.8/fl, fl the corner of the high-pass filters, +Inf where none is known, or
+//	        the share that the recipe states of 1/fl, where that is less;
 //	fromS = 1/(0.8·fh), fh the corner of the low-pass filters or half the sampling rate
 //	        of the component as delivered, whichever is lower.
 //
@@ -28,5 +29,5 @@ func (c Conditioned) UsableBand() (fromS, toS float64) {
 	if c.LowCutHz > 0 {
 		toS = longShare / c.LowCutHz
 	}
-	return 1 / (shortShare * high), toS
+	return 1 / (shortShare * high), min(toS, c.LongS)
 }

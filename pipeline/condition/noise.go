@@ -12,9 +12,6 @@ const (
 	guardS = 0.5
 	// leastNoiseS is the shortest noise in s that is taken for such.
 	leastNoiseS = 2.0
-	// onsetCornerHz is of the high-pass filter behind which an onset is looked for, so
-	// that drift is none.
-	onsetCornerHz = 1.0
 	// smoothing is the half width of the band over which power is averaged: a sixth of
 	// an octave to either side.
 	smoothing = 1.122462048309373
@@ -25,23 +22,11 @@ const (
 // quietSamples is the number of samples before the onset, less the guard, 0 where they
 // are too few.
 func quietSamples(x []float64, stepS float64) int {
-	n := onset(x, stepS) - int(math.Ceil(guardS/stepS))
+	n := signal.Arrival(x, stepS) - int(math.Ceil(guardS/stepS))
 	if float64(n)*stepS < leastNoiseS {
 		return 0
 	}
 	return n
-}
-
-// onset is the sample at which the motion arrives, 0 where x begins within it.
-func onset(x []float64, stepS float64) int {
-	f, err := signal.HighPass(1, min(onsetCornerHz, 0.1/stepS), stepS)
-	if err != nil {
-		return 0
-	}
-	y := append([]float64(nil), x...)
-	signal.Subtract(y, y[0])
-	f.OneWay(y)
-	return signal.Onset(y)
 }
 
 // ratios are the amplitudes of motion over noise, each for its length, at frequencies

@@ -1,6 +1,7 @@
 package condition
 
 import (
+	"errors"
 	"fmt"
 	"strings"
 	"testing"
@@ -27,10 +28,13 @@ func TestParse(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	const want = `{"name":"northwater-quays","states":["raw","unknown"],"steps":[` +
+	const want = `{"version":1,"name":"northwater-quays","states":["raw","unknown"],"steps":[` +
 		`{"do":"trend","degree":1},{"do":"high-pass","order":4,"corner_hz":0.15},{"do":"oversample","factor":4}]}`
 	if got := r.Canonical(); got != want {
 		t.Errorf("got %s, want %s", got, want)
+	}
+	if _, err := FromCanonical(strings.Replace(want, ":1,", ":2,", 1)); !errors.Is(err, ErrOtherVersion) {
+		t.Errorf("of another version: %v", err)
 	}
 	if !r.AppliesTo("unknown") || r.AppliesTo("corrected") {
 		t.Error("applies to other states than it says")

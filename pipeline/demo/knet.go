@@ -3,6 +3,7 @@ package demo
 import (
 	"fmt"
 	"math"
+	"math/rand/v2"
 	"strconv"
 	"time"
 )
@@ -67,14 +68,24 @@ func knetFile(r *record, c column, i int, direction string) []byte {
 	})
 }
 
-// knetCounts returns the samples as raw counts with the sensor's offset, and the
-// peak in gal that is left when the mean of all counts is removed.
+// What a sensor adds to the motion before anybody corrects it, in gal: the standard
+// deviation of its noise, and how far its zero wanders over a record at most.
+const (
+	noiseGal = 0.02
+	driftGal = 0.3
+)
+
+// knetCounts returns the samples as raw counts with the sensor's offset, noise and
+// drift, and the peak in gal that is left when the mean of all counts is removed.
 func knetCounts(r *record, c column, i int) (counts []int64, peakGal float64) {
 	offset := int64(3000 + 7*r.serial()%9000 - 2500*i)
+	random := rand.New(rand.NewPCG(uint64(r.event.origin.Unix()), uint64(8*r.serial()+3*int(r.place)+i)))
+	drift := driftGal * (2*random.Float64() - 1)
 	counts = make([]int64, len(c.motion))
 	var sum int64
 	for j, v := range c.motion {
-		gal := float64(v) * cmps2
+		along := float64(j) / float64(len(counts))
+		gal := float64(float64(v)*cmps2) + float64(noiseGal*random.NormFloat64()) + float64(drift*along*along)
 		counts[j] = offset + int64(math.Round(gal*scaleCounts/scaleGal))
 		sum += counts[j]
 	}

@@ -38,7 +38,8 @@ catalogue.csv      magnitudes, places, Vs30 and distances, which some of the
 	}
 	return fmt.Appendf(b, `
 Accelerations are filtered from %g Hz to 40 Hz, or to 0.4 of the sampling rate
-where that is less. One station has a second set of instruments on a roof and
+where that is less; those of the ground array are raw counts, with the offset,
+noise and drift of a sensor. One station has a second set of instruments on a roof and
 one has a borehole, where the list of stations reaches that far; neither is a
 ground motion at the surface.
 `, lowCutHz)

@@ -7,26 +7,23 @@ import (
 	"swaybook/pipeline/signal"
 )
 
-// Flag is one thing that can be wrong with a component.
-type Flag string
-
 // The flags that samples alone can raise.
 const (
-	FlagOffset        Flag = "offset"         // the mean is not 0
-	FlagBaselineStep  Flag = "baseline_step"  // the level after the motion is not that before it
-	FlagDrift         Flag = "drift"          // velocity or displacement does not come to rest
-	FlagNoPreEvent    Flag = "no_pre_event"   // too little before the arrival to tell noise by
-	FlagLateStart     Flag = "late_start"     // begins in the strong motion
-	FlagEarlyEnd      Flag = "early_end"      // ends in it
-	FlagSeveralEvents Flag = "several_events" // strong motion twice, with rest between
-	FlagLowSignal     Flag = "low_signal"     // does not stand out of the noise
+	FlagOffset        = "offset"         // the mean is not 0
+	FlagBaselineStep  = "baseline_step"  // the level after the motion is not that before it
+	FlagDrift         = "drift"          // the ground does not come to rest
+	FlagNoPreEvent    = "no_pre_event"   // too little before the arrival to tell noise by
+	FlagLateStart     = "late_start"     // begins in the strong motion
+	FlagEarlyEnd      = "early_end"      // ends in it
+	FlagSeveralEvents = "several_events" // strong motion twice, with rest between
+	FlagLowSignal     = "low_signal"     // does not stand out of the noise
 )
 
 // Finding is a flag with what raised it.
 type Finding struct {
-	Flag  Flag
+	Flag  string
 	Value float64 // what was measured
-	Limit float64 // what it is beyond
+	Bound float64 // what it is beyond
 	// Words is a sentence for people.
 	Words string
 }
@@ -36,7 +33,7 @@ const (
 	offsetShare = 0.01 // of PGA
 	stepShare   = 0.01 // of PGA
 	levelErrors = 5    // how many standard errors a level must be off, besides
-	restShare   = 0.1  // of PGV and PGD, at the last sample
+	restShare   = 0.25 // of PGV, by the mean velocity over the last tenth
 	preEventS   = 2.0
 	windowS     = 1.0  // of the root mean squares that follow
 	startShare  = 0.3  // of the greatest, in the first second
@@ -72,8 +69,8 @@ type assessment struct {
 	found []Finding
 }
 
-func (a *assessment) add(flag Flag, value, limit float64, words string, args ...any) {
-	a.found = append(a.found, Finding{flag, value, limit, fmt.Sprintf(words, args...)})
+func (a *assessment) add(flag string, value, bound float64, words string, args ...any) {
+	a.found = append(a.found, Finding{flag, value, bound, fmt.Sprintf(words, args...)})
 }
 
 // level is a mean with its standard error, of samples that may hang together: the
@@ -118,31 +115,23 @@ func (a *assessment) levels() {
 	}
 }
 
-// rest looks whether velocity and displacement, integrated from rest, come back to it.
+// rest looks whether the ground, integrated from rest, comes back to it: whether its mean
+// velocity over the last tenth is small against the peak, which is the slope at which the
+// displacement drifts.
 func (a *assessment) rest() {
-	x := append([]float64(nil), a.x...)
+	v := append([]float64(nil), a.x...)
 	if float64(a.onset)*a.stepS >= preEventS {
-		signal.Subtract(x, signal.Mean(x[:a.onset]))
+		signal.Subtract(v, signal.Mean(v[:a.onset]))
 	}
-	v := signal.Integrate(x, x, a.stepS)
-	share, what := lastShare(v), "velocity"
-	if d := lastShare(signal.Integrate(v, v, a.stepS)); d > share {
-		share, what = d, "displacement"
-	}
-	if share > restShare {
-		a.add(FlagDrift, share, restShare, "the %s ends at %.2g of its peak", what, share)
-	}
-}
-
-func lastShare(x []float64) float64 {
+	signal.Integrate(v, v, a.stepS)
+	last := v[len(v)-max(1, len(v)/10):]
 	top := 0.0
-	for _, v := range x {
-		top = max(top, math.Abs(v))
+	for _, u := range v {
+		top = max(top, math.Abs(u))
 	}
-	if top == 0 {
-		return 0
+	if share := math.Abs(signal.Mean(last)) / top; share > restShare {
+		a.add(FlagDrift, share, restShare, "the displacement drifts at the end by %.2g of PGV", share)
 	}
-	return math.Abs(x[len(x)-1]) / top
 }
 
 // extent looks at where the motion begins, ends and comes back, by root mean squares of

@@ -105,6 +105,24 @@ func Onset(x []float64) int {
 	return best
 }
 
+// arrivalCornerHz is of the high-pass filter behind which an arrival is looked for, so
+// that drift is none.
+const arrivalCornerHz = 1.0
+
+// Arrival is the Onset of a motion x in which slow changes do not count: behind a causal
+// high-pass filter of first order at 1 Hz, or at a fifth of half the sampling rate where
+// that is lower. x is not empty.
+func Arrival(x []float64, stepS float64) int {
+	f, err := HighPass(1, min(arrivalCornerHz, 0.1/stepS), stepS)
+	if err != nil {
+		return 0
+	}
+	y := append([]float64(nil), x...)
+	Subtract(y, y[0])
+	f.OneWay(y)
+	return Onset(y)
+}
+
 // variances are those of x[:k], by k, in one pass.
 //
 // Source: B. P. Welford, Note on a Method for Calculating Corrected Sums of Squares and

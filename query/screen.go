@@ -1,0 +1,112 @@
+package query
+
+import (
+	"slices"
+
+	"swaybook/db"
+)
+
+// Screen says which findings leave a motion out of statistics.
+type Screen string
+
+// The screens.
+const (
+	// ScreenNone leaves nothing out.
+	ScreenNone Screen = "none"
+	// ScreenNormal leaves out what is no record of the motion: clipped, lost_data,
+	// duplicated, low_signal.
+	ScreenNormal Screen = "normal"
+	// ScreenStrict leaves out besides what is a doubtful or partial one: spikes, which may
+	// be the motion's own where sampling is coarse, peak_mismatch, irregular_sampling, late_start, early_end, several_events, and, of components that
+	// the recipe left as delivered, offset, baseline_step and drift.
+	ScreenStrict Screen = "strict"
+)
+
+// ParseScreen reads the name of a screen. The empty text gives ScreenNormal.
+func ParseScreen(text string) (Screen, error) {
+	s := Screen(text)
+	switch s {
+	case "":
+		return ScreenNormal, nil
+	case ScreenNone, ScreenNormal, ScreenStrict:
+		return s, nil
+	}
+	return s, usage("screen", "unknown screen %q; accepted: strict, normal, none", text)
+}
+
+// qualityFlags is what an expression sees of a motion's findings: of a pair those of both.
+type qualityFlags struct {
+	Clipped       bool `expr:"clipped"`
+	Spikes        bool `expr:"spikes"`
+	LostData      bool `expr:"lost_data"`
+	Duplicated    bool `expr:"duplicated"`
+	LowSignal     bool `expr:"low_signal"`
+	PeakMismatch  bool `expr:"peak_mismatch"`
+	Irregular     bool `expr:"irregular_sampling"`
+	LateStart     bool `expr:"late_start"`
+	EarlyEnd      bool `expr:"early_end"`
+	SeveralEvents bool `expr:"several_events"`
+	Offset        bool `expr:"offset"`
+	BaselineStep  bool `expr:"baseline_step"`
+	Drift         bool `expr:"drift"`
+	NoPreEvent    bool `expr:"no_pre_event"`
+}
+
+// kind is a kind of finding.
+type kind struct {
+	name     string
+	of       func(*qualityFlags) *bool // where an expression sees it
+	screen   Screen                    // the mildest that leaves it out, "" for none
+	isMended bool                      // by the steps of a recipe
+}
+
+// flags are all of them, in the order in which they count as reasons.
+var flags = []kind{
+	{"clipped", func(q *qualityFlags) *bool { return &q.Clipped }, ScreenNormal, false},
+	{"lost_data", func(q *qualityFlags) *bool { return &q.LostData }, ScreenNormal, false},
+	{"duplicated", func(q *qualityFlags) *bool { return &q.Duplicated }, ScreenNormal, false},
+	{"low_signal", func(q *qualityFlags) *bool { return &q.LowSignal }, ScreenNormal, false},
+	{"spikes", func(q *qualityFlags) *bool { return &q.Spikes }, ScreenStrict, false},
+	{"peak_mismatch", func(q *qualityFlags) *bool { return &q.PeakMismatch }, ScreenStrict, false},
+	{"irregular_sampling", func(q *qualityFlags) *bool { return &q.Irregular }, ScreenStrict, false},
+	{"late_start", func(q *qualityFlags) *bool { return &q.LateStart }, ScreenStrict, false},
+	{"early_end", func(q *qualityFlags) *bool { return &q.EarlyEnd }, ScreenStrict, false},
+	{"several_events", func(q *qualityFlags) *bool { return &q.SeveralEvents }, ScreenStrict, false},
+	{"offset", func(q *qualityFlags) *bool { return &q.Offset }, ScreenStrict, true},
+	{"baseline_step", func(q *qualityFlags) *bool { return &q.BaselineStep }, ScreenStrict, true},
+	{"drift", func(q *qualityFlags) *bool { return &q.Drift }, ScreenStrict, true},
+	{"no_pre_event", func(q *qualityFlags) *bool { return &q.NoPreEvent }, "", false},
+}
+
+// qualityOf is what was found of the components, those delivered as they are.
+func qualityOf(components ...*db.HeldComponent) (q qualityFlags) {
+	for _, c := range components {
+		for _, f := range c.Findings {
+			if at := slices.IndexFunc(flags, func(known kind) bool { return known.name == f.Flag }); at >= 0 {
+				*flags[at].of(&q) = true
+			}
+		}
+	}
+	return q
+}
+
+// screened returns the finding for which the screen leaves the motion out, "" for none.
+func (s Screen) screened(m *motion) string {
+	if s == ScreenNone {
+		return ""
+	}
+	for _, known := range flags {
+		if known.screen != ScreenNormal && known.screen != s {
+			continue
+		}
+		for _, c := range m.members {
+			if known.isMended && c.Conditioning != nil {
+				continue
+			}
+			if slices.ContainsFunc(c.Findings, func(f db.Finding) bool { return f.Flag == known.name }) {
+				return known.name
+			}
+		}
+	}
+	return ""
+}
