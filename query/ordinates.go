@@ -39,15 +39,16 @@ func (o *ordinates) without(motions map[int]string) *ordinates {
 // Measure is the quantity of a spectrum.
 type Measure string
 
-// Spectral displacement in m, pseudo-velocity in m/s and pseudo-acceleration in
-// g.
+// Spectral displacement in m, pseudo-velocity in m/s, pseudo-acceleration in g, and the
+// ratio of the vertical spectrum to the horizontal one, which is that of all three.
 const (
 	MeasureSD  Measure = "sd"
 	MeasurePSV Measure = "psv"
 	MeasurePSA Measure = "psa"
+	MeasureVH  Measure = "vh"
 )
 
-// ParseMeasure reads "sd", "psv" or "psa". The empty text gives MeasurePSA.
+// ParseMeasure reads "sd", "psv", "psa" or "vh". The empty text gives MeasurePSA.
 func ParseMeasure(text string) (Measure, error) {
 	if text == "" {
 		return MeasurePSA, nil
@@ -57,10 +58,10 @@ func ParseMeasure(text string) (Measure, error) {
 }
 
 func (m Measure) validate() error {
-	if m == MeasureSD || m == MeasurePSV || m == MeasurePSA {
+	if m == MeasureSD || m == MeasurePSV || m == MeasurePSA || m == MeasureVH {
 		return nil
 	}
-	return usage("measure", "unknown measure %q; accepted: sd, psv, psa", string(m))
+	return usage("measure", "unknown measure %q; accepted: sd, psv, psa, vh", string(m))
 }
 
 // omega is 2π/T, the number that the store keeps beside each period.

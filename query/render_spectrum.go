@@ -17,6 +17,8 @@ func (m Measure) unitOf(u Units) (name, suffix string, per float64) {
 	switch {
 	case m == MeasurePSA:
 		return "g", "g", 1
+	case m == MeasureVH:
+		return "1", "ratio", 1
 	case m == MeasurePSV && us:
 		return "in/s", "in_s", metresPerInch
 	case m == MeasurePSV:
@@ -34,6 +36,8 @@ func (m Measure) title() string {
 		return "Pseudo-velocity PSV"
 	case MeasurePSA:
 		return "Pseudo-acceleration PSA"
+	case MeasureVH:
+		return "Vertical over horizontal spectrum V/H"
 	}
 	return "Spectral displacement SD"
 }
@@ -79,7 +83,11 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 		cells = append(cells, reductionCells(r.scaled(per))...)
 		t.add(append(cells, a.Selection.governingText(&r))...)
 	}
-	text := fmt.Appendf(nil, "%s in %s, damping %s\n%s\n%s\n", a.Measure.title(), unit, percentText(a.Damping),
+	in := " in " + unit
+	if a.Measure == MeasureVH {
+		in = "" // a number
+	}
+	text := fmt.Appendf(nil, "%s%s, damping %s\n%s\n%s\n", a.Measure.title(), in, percentText(a.Damping),
 		a.Selection.heading(), a.Selection.methodLine())
 	text = t.appendTo(text)
 	return append(append(text, '\n'), a.Remarks()...)

@@ -32,6 +32,8 @@ type picked struct {
 	held    int
 	leftOut map[string]int // records by reason
 	hint    string         // where nothing is left
+	// verticals are the vertical components by record.
+	verticals map[int64]*db.HeldComponent
 	// ignoresBand says that ordinates outside the usable band count.
 	ignoresBand bool
 }
@@ -66,6 +68,12 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	p.hint, p.leftOut, p.ignoresBand = p.hintOf(), map[string]int{}, s.IgnoreUsableBand
 	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
 	p.motions = make([]motion, 0, len(held))
+	p.verticals = map[int64]*db.HeldComponent{}
+	for i := range held {
+		if held[i].Role == db.RoleV {
+			p.verticals[held[i].RecordID] = &held[i]
+		}
+	}
 	if err := p.findRotated(ctx, snapshot, details, held); err != nil {
 		return nil, err
 	}

@@ -61,6 +61,9 @@ func (q SpectrumQuestion) withDefaults() (SpectrumQuestion, error) {
 	if err := q.Measure.validate(); err != nil {
 		return q, err
 	}
+	if q.Measure == MeasureVH && q.Component == ComponentV {
+		return q, usage("measure", "vh is of a horizontal component, v over which it is taken")
+	}
 	if len(q.PeriodsS) > 0 && q.Band != (Band{}) {
 		return q, usage("band", "a list of periods and a band exclude each other; give one")
 	}
@@ -112,6 +115,11 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	loaded, err := s.load(ctx, picked, periods, -1)
 	if err != nil {
 		return nil, err
+	}
+	if q.Measure == MeasureVH {
+		if loaded, err = s.overHorizontal(ctx, picked, loaded); err != nil {
+			return nil, err
+		}
 	}
 	reductions, err := reduceAll(ctx, loaded, picked.motions, q.Measure, q.Percentiles)
 	if err != nil {
