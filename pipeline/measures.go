@@ -7,7 +7,6 @@ import (
 	"swaybook/db"
 	"swaybook/pipeline/condition"
 	"swaybook/pipeline/intensity"
-	"swaybook/pipeline/signal"
 	"swaybook/pipeline/spectrum"
 )
 
@@ -34,7 +33,7 @@ func (s solvers) measures(m condition.Conditioned, sd []float64) map[string]floa
 		db.MeasureSignificant595:    energy.SignificantDuration(0.05, 0.95),
 		db.MeasureBracketed:         intensity.BracketedDuration(x, stepS, bracketMPS2),
 		db.MeasureRMS:               energy.RootMeanSquare(),
-		db.MeasureMeanPeriod:        intensity.MeanPeriod(x, stepS, signal.FastLength),
+		db.MeasureMeanPeriod:        intensity.MeanPeriod(x, stepS),
 		db.MeasureSpectrumIntensity: s.spectrumIntensity(sd),
 	} {
 		if !math.IsNaN(value) && !math.IsInf(value, 0) {

@@ -34,7 +34,7 @@ func TestSine(t *testing.T) {
 	expect(t, "all seconds count", StandardisedAbsoluteVelocity(a, stepS), AbsoluteVelocity(a, stepS), 1e-12)
 	expect(t, "duration 5-95", e.SignificantDuration(0.05, 0.95), 0.9*d, 0.02)
 	expect(t, "root mean square", e.RootMeanSquare(), amplitude/math.Sqrt2, 0.02)
-	expect(t, "mean period", MeanPeriod(sine(amplitude, 1.5, 0.005, 20000), 0.005, func(n int) int { return n }), 1/1.5, 1e-3)
+	expect(t, "mean period", MeanPeriod(sine(amplitude, 1.5, 0.005, 20000), 0.005), 1/1.5, 1e-3)
 }
 
 // Of a constant the build-up is a straight line: 90 % of the length (Trifunac and Brady
@@ -106,7 +106,7 @@ func TestNothing(t *testing.T) {
 			t.Errorf("%s of nothing: %g", what, got)
 		}
 	}
-	if got := MeanPeriod(make([]float64, 50), 0.01, func(n int) int { return n }); !math.IsNaN(got) {
+	if got := MeanPeriod(make([]float64, 50), 0.01); !math.IsNaN(got) {
 		t.Errorf("mean period of nothing: %g", got)
 	}
 }

@@ -3,7 +3,7 @@ package intensity
 import (
 	"math"
 
-	"gonum.org/v1/gonum/dsp/fourier"
+	"swaybook/pipeline/signal"
 )
 
 // The band of frequencies, and the widest step between them, of a mean period, in Hz.
@@ -21,19 +21,16 @@ const (
 // that takes. It is NaN of a motion without amplitude in that band, and of one whose
 // sampling rate is below 40 Hz, which does not reach its end.
 //
-// length gives a length from n on of which a transform is fast.
-//
 // Source: E. M. Rathje, N. A. Abrahamson and J. D. Bray, Simplified Frequency Content
 // Estimates of Earthquake Ground Motions, J. Geotech. Geoenviron. Eng. 124(2), 1998.
-func MeanPeriod(a []float64, stepS float64, length func(n int) int) float64 {
+func MeanPeriod(a []float64, stepS float64) float64 {
 	if stepS > 0.5/meanPeriodToHz*(1+1e-9) || len(a) == 0 {
 		return math.NaN()
 	}
-	n := length(max(len(a), int(math.Ceil(1/(meanPeriodStepHz*stepS)))))
-	padded := append(make([]float64, 0, n), a...)[:n]
+	n := signal.FastLength(max(len(a), int(math.Ceil(1/(meanPeriodStepHz*stepS)))))
 	widthHz := 1 / (float64(n) * stepS)
 	over, under := 0.0, 0.0
-	for k, c := range fourier.NewFFT(n).Coefficients(nil, padded) {
+	for k, c := range signal.Transform(a, n) {
 		f := float64(k) * widthHz
 		if f < meanPeriodFromHz || f > meanPeriodToHz {
 			continue

@@ -3,8 +3,6 @@ package signal
 import (
 	"math"
 	"math/cmplx"
-
-	"gonum.org/v1/gonum/dsp/fourier"
 )
 
 // Power is the power of a motion by frequency, one-sided: Density[k] at k·StepHz, in
@@ -22,7 +20,7 @@ type Power struct {
 // periodogram of a tapered record (from memory).
 func PowerOf(x []float64, stepS float64) Power {
 	n := FastLength(len(x))
-	tapered := append(make([]float64, 0, n), x...)
+	tapered := append([]float64(nil), x...)
 	Subtract(tapered, Mean(tapered))
 	ends := len(x) / 20
 	Taper(tapered, ends, ends)
@@ -31,7 +29,7 @@ func PowerOf(x []float64, stepS float64) Power {
 		w := bell(i, ends)
 		kept -= 2 * (1 - float64(w*w))
 	}
-	coefficients := fourier.NewFFT(n).Coefficients(nil, tapered[:n])
+	coefficients := Transform(tapered, n)
 	p := Power{Density: make([]float64, len(coefficients)), StepHz: 1 / (float64(n) * stepS)}
 	for k, c := range coefficients {
 		a := cmplx.Abs(c)

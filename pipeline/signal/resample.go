@@ -26,8 +26,7 @@ func Resample(x []float64, factor int) []float64 {
 		return append([]float64(nil), x...)
 	}
 	n := FastLength(len(x))
-	padded := append(make([]float64, 0, n), x...)[:n]
-	narrow := fourier.NewFFT(n).Coefficients(nil, padded)
+	narrow := Transform(x, n)
 	wide := make([]complex128, n*factor/2+1)
 	copy(wide, narrow)
 	if n%2 == 0 {
