@@ -185,9 +185,13 @@ func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error
 // DescribeComponent replaces a component's axis, label, rank and azimuth by
 // those of c, and its corner frequencies where c states them. Another azimuth of a
 // horizontal turns the pair that it belongs to, so what was rotated of that is
-// removed.
+// removed; other corners may be other filters, so what was computed behind a recipe's
+// steps is, too. The run that does so computes both anew.
 func (t *Tx) DescribeComponent(ctx context.Context, componentID int64, c Component) error {
 	if err := t.forgetTurned(ctx, componentID, c.AzimuthDeg); err != nil {
+		return err
+	}
+	if err := t.forgetConditioned(ctx, componentID, c.LowCutHz, c.HighCutHz); err != nil {
 		return err
 	}
 	err := t.exec(ctx, `UPDATE component SET axis = ?, label = ?, rank = ?, azimuth_deg = ?,
@@ -212,6 +216,36 @@ func (t *Tx) forgetTurned(ctx context.Context, componentID int64, azimuthDeg *fl
 	}
 	for _, id := range turned {
 		if err := t.forgetRotated(ctx, id); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// forgetConditioned removes what was computed of the component behind the steps of a
+// recipe, and of its record's horizontals, where a corner that is known is not the stored
+// one.
+func (t *Tx) forgetConditioned(ctx context.Context, componentID int64, lowCutHz, highCutHz *float64) error {
+	rows, err := t.tx.QueryContext(ctx, `SELECT c.record_id, c.role FROM component c WHERE c.id = ?1
+		AND (coalesce(?2, c.low_cut_hz) IS NOT c.low_cut_hz OR coalesce(?3, c.high_cut_hz) IS NOT c.high_cut_hz)
+		AND EXISTS (SELECT 1 FROM conditioning k WHERE k.record_id = c.record_id AND k.role = c.role)`, componentID, lowCutHz, highCutHz)
+	if err != nil {
+		return fmt.Errorf("describe component: %w", err)
+	}
+	changed, err := collect(rows, func(c *roleOf) []any { return []any{&c.record, &c.role} })
+	if err != nil {
+		return fmt.Errorf("describe component: %w", err)
+	}
+	for _, c := range changed {
+		// The conditioning goes last: it names the generations.
+		for _, table := range computedTables {
+			err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ?1 AND role = ?2 AND generation_id IN
+				(SELECT generation_id FROM conditioning WHERE record_id = ?1 AND role = ?2)`, c.record, c.role)
+			if err != nil {
+				return fmt.Errorf("forget %s: %w", table, err)
+			}
+		}
+		if err := t.forgetRotated(ctx, c.record); err != nil {
 			return err
 		}
 	}

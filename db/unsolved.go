@@ -18,6 +18,11 @@ func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, e
 	return unsolved(ctx, s.read, generationID, "")
 }
 
+// Unsolved is Store.Unsolved of the snapshot's generation.
+func (s *Snapshot) Unsolved(ctx context.Context) ([]Unsolved, error) {
+	return unsolved(ctx, s.tx, s.Generation.ID, "")
+}
+
 // IsUnsolved reports whether the record still holds this very component, and lacks its
 // spectra.
 func (t *Tx) IsUnsolved(ctx context.Context, generationID int64, u Unsolved) (bool, error) {
@@ -50,8 +55,17 @@ func (s *Store) ReadUnsolved(ctx context.Context, u Unsolved) (StoredMotion, err
 	return m, nil
 }
 
-// AddSolved stores what was computed of a component. Nothing of that may be stored: see
-// IsUnsolved.
+// AddSolved stores what was computed of a component, instead of what the generation may
+// hold of it.
 func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, computed Spectra) error {
+	for _, table := range computedTables {
+		err := t.exec(ctx, `DELETE FROM `+table+` WHERE generation_id = ? AND record_id = ? AND role = ?`, generationID, u.RecordID, u.Role)
+		if err != nil {
+			return fmt.Errorf("forget %s: %w", table, err)
+		}
+	}
 	return t.addSpectra(ctx, u.RecordID, u.Role, generationID, computed)
 }
+
+// computedTables hold what is computed of a record's roles in a generation.
+var computedTables = []string{"spectrum", "measure", "conditioning"}
