@@ -8,6 +8,13 @@ import (
 	"swaybook/pipeline/condition"
 )
 
+// Recomputed is one held component of which the generation lacked the spectra done.
+type Recomputed struct {
+	Done, Total  int
+	Record, Role string
+	Reason       string // why it could not be solved, "" where it was
+}
+
 // complete computes the spectra of held components that the generation lacks, from the
 // stored samples: all of them where a recipe is new to the store, and those of a run
 // that was stopped, or that served another recipe. A component that cannot be solved is
@@ -17,6 +24,7 @@ func (w *writer) complete(ctx context.Context) error {
 	if err != nil || len(lacking) == 0 {
 		return err
 	}
+	w.summary.Uncomputed = len(lacking)
 	c := &completer{writer: w, total: len(lacking)}
 	return stage[db.Unsolved, completed]{
 		workers: w.opts.Workers, clock: w.opts.Clock, process: c.process,
@@ -74,8 +82,12 @@ func (c *completer) storeBatch(ctx context.Context, batch []completed) error {
 	}
 	for _, done := range batch {
 		c.done++
-		c.summary.addCompleted(done)
-		c.opts.Solved(c.done, c.total)
+		report := Recomputed{Done: c.done, Total: c.total, Record: done.component.Code, Role: done.component.Role}
+		if done.err != nil {
+			report.Reason = done.err.Error()
+		}
+		c.summary.addRecomputed(report)
+		c.opts.Recomputed(report)
 	}
 	return nil
 }

@@ -51,9 +51,9 @@ type Options struct {
 	Progress func(Progress)
 	// SkipRotation leaves the last stage to a later run.
 	SkipRotation bool
-	// Solved is called by the writer after each held component of the second stage; may
-	// be nil.
-	Solved func(done, total int)
+	// Recomputed is called by the writer after each held component of the second stage;
+	// may be nil.
+	Recomputed func(Recomputed)
 	// Rotated is called by the writer after each record of the last stage, in
 	// the order in which they were stored; may be nil.
 	Rotated func(Rotated)
@@ -112,8 +112,8 @@ func withDefaults(opts Options) Options {
 	if opts.Progress == nil {
 		opts.Progress = func(Progress) {}
 	}
-	if opts.Solved == nil {
-		opts.Solved = func(int, int) {}
+	if opts.Recomputed == nil {
+		opts.Recomputed = func(Recomputed) {}
 	}
 	if opts.Rotated == nil {
 		opts.Rotated = func(Rotated) {}

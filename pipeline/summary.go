@@ -43,6 +43,8 @@ type Summary struct {
 	// NotRecomputed those that could not be solved.
 	Recomputed    int `json:"recomputed"`
 	NotRecomputed int `json:"not_recomputed"`
+	// Uncomputed counts those that a run which was stopped did not reach.
+	Uncomputed int `json:"left_to_compute"`
 	// Unrotated counts the pairs left to a later run: all where that was asked for,
 	// those not reached by a run that was stopped while it rotated.
 	Unrotated int `json:"left_to_rotate"`
@@ -71,8 +73,9 @@ func (s *Summary) add(f FileReport) {
 	}
 }
 
-func (s *Summary) addCompleted(c completed) {
-	if c.err != nil {
+func (s *Summary) addRecomputed(r Recomputed) {
+	s.Uncomputed--
+	if r.Reason != "" {
 		s.NotRecomputed++
 		return
 	}

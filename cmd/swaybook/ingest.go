@@ -116,7 +116,7 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 
 func pipelineOptions(store string, m *monitor) pipeline.Options {
 	return pipeline.Options{
-		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Solved: m.component, Rotated: m.record, Doubted: m.doubt,
+		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Recomputed: m.component, Rotated: m.record, Doubted: m.doubt,
 		Own: map[string]string{store: "the store itself", store + "-wal": "the store's log", store + "-shm": "the store's log"},
 	}
 }
@@ -199,6 +199,10 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 // interruption says how far a run came that somebody stopped.
 func interruption(s pipeline.Summary) error {
 	how := fmt.Sprintf("after %d files", s.Files)
+	if s.Uncomputed > 0 {
+		done := s.Recomputed + s.NotRecomputed
+		how = fmt.Sprintf("while computing, %d of %d held components", done, done+s.Uncomputed)
+	}
 	if s.Unrotated > 0 {
 		done := s.Rotated + s.NotRotated + s.Damaged
 		how = fmt.Sprintf("while rotating, %d of %d records", done, done+s.Unrotated)
@@ -219,6 +223,8 @@ type ingestReport struct {
 	Warnings        []warningCount `json:"warnings"`
 	// Unfit lists why horizontal pairs were not rotated.
 	Unfit []reasonCount `json:"not_rotated_by_reason"`
+	// Unsolved lists why held components were not computed anew.
+	Unsolved []reasonCount `json:"not_recomputed_by_reason"`
 	// Catalogue lists what in the catalogue had no effect.
 	Catalogue []string `json:"catalogue_notes"`
 	// Metadata lists what of StationXML and QuakeML was not taken, or is doubtful, and
@@ -258,17 +264,22 @@ type fileNote struct {
 	Cause  string `json:"cause"`
 }
 
+func reasonCounts(remarks tally) []reasonCount {
+	out := make([]reasonCount, len(remarks))
+	for i, r := range remarks {
+		out[i] = reasonCount{r.text, r.count, r.first, r.detail}
+	}
+	return out
+}
+
 func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) ingestReport {
 	m := o.monitor
 	r := ingestReport{
-		Store: o.store, Summary: summary, skipped: o.pipeline.SkipRotation, ByCause: []causeCount{}, Warnings: []warningCount{}, Unfit: []reasonCount{}, Catalogue: []string{},
+		Store: o.store, Summary: summary, skipped: o.pipeline.SkipRotation, ByCause: []causeCount{}, Warnings: []warningCount{}, Unfit: reasonCounts(m.unfit), Unsolved: reasonCounts(m.unsolved), Catalogue: []string{},
 		SkippedFiles: m.skipped.files, SkippedOmitted: m.skipped.omitted, RejectedFiles: m.rejected.files, RejectedOmitted: m.rejected.omitted,
 	}
 	for _, w := range m.warnings {
 		r.Warnings = append(r.Warnings, warningCount{w.text, w.count, w.first})
-	}
-	for _, u := range m.unfit {
-		r.Unfit = append(r.Unfit, reasonCount{u.text, u.count, u.first, u.detail})
 	}
 	for _, cause := range slices.Sorted(maps.Keys(m.causes)) {
 		r.ByCause = append(r.ByCause, causeCount{cause, m.causes[cause]})
@@ -319,6 +330,7 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	}
 	if r.NotRecomputed > 0 {
 		p.printf("  held components that could not be       %7d\n", r.NotRecomputed)
+		p.reasons(r.Unsolved)
 	}
 	r.printRotation(p)
 	if r.Stored == 0 && r.Rotated == 0 && r.Recomputed == 0 {
@@ -370,7 +382,12 @@ func (r ingestReport) printRotation(p *printer) {
 	if r.Damaged > 0 {
 		p.printf("  records damaged in the store            %7d\n", r.Damaged)
 	}
-	for _, u := range r.Unfit {
+	p.reasons(r.Unfit)
+}
+
+// reasons prints why something was not done, with how often and of what first.
+func (p *printer) reasons(list []reasonCount) {
+	for _, u := range list {
 		detail := ""
 		if u.Detail != "" {
 			detail = " (" + u.Detail + ")"

@@ -37,7 +37,8 @@ type monitor struct {
 	skipped, rejected notes
 	doubts            notes          // of earthquakes
 	causes            map[string]int // rejections by cause
-	warnings, unfit   tally          // unfit: why pairs were not rotated
+	warnings          tally
+	unfit, unsolved   tally // why pairs were not rotated, and components not computed anew
 }
 
 // notes is a list of single files, the first of them.
@@ -97,9 +98,12 @@ func (m *monitor) file(p pipeline.Progress) {
 }
 
 // component takes note of one held component computed anew.
-func (m *monitor) component(done, total int) {
+func (m *monitor) component(r pipeline.Recomputed) {
 	m.enter("computing")
-	m.show("computing", "components", done, total)
+	if r.Reason != "" {
+		m.unsolved.add(r.Reason, r.Record, r.Role)
+	}
+	m.show("computing", "components", r.Done, r.Total)
 }
 
 // enter begins another stage.

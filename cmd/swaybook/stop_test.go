@@ -65,8 +65,9 @@ func TestAStoppedIngestIsFinishedByTheNext(t *testing.T) {
 // What somebody stopped says in which stage it was.
 func TestInterruptionNamesTheStage(t *testing.T) {
 	for want, s := range map[string]pipeline.Summary{
-		"interrupted after 7 files; run the same command again to finish the rest":                   {Files: 7},
-		"interrupted while rotating, 4 of 10 records; run the same command again to finish the rest": {Files: 7, Rotated: 2, NotRotated: 1, Damaged: 1, Unrotated: 6},
+		"interrupted after 7 files; run the same command again to finish the rest":                           {Files: 7},
+		"interrupted while computing, 3 of 9 held components; run the same command again to finish the rest": {Files: 7, Recomputed: 2, NotRecomputed: 1, Uncomputed: 6},
+		"interrupted while rotating, 4 of 10 records; run the same command again to finish the rest":         {Files: 7, Rotated: 2, NotRotated: 1, Damaged: 1, Unrotated: 6},
 	} {
 		if err := interruption(s); err.Error() != want || !errors.Is(err, errInterrupted) {
 			t.Errorf("interruption(%+v) = %v, want %s", s, err, want)
