@@ -96,5 +96,8 @@ func (s *Summary) addRotated(r Rotated) {
 	s.Rotated++
 }
 
+// HasBegun reports whether the run came to any file, component or record.
+func (s Summary) HasBegun() bool { return s.Files+s.Recomputed+s.Uncomputed+s.Rotated+s.Unrotated > 0 }
+
 // Complete reports whether nothing was rejected.
 func (s Summary) Complete() bool { return s.Rejected == 0 && s.Channels == 0 }

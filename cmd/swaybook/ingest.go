@@ -176,7 +176,7 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 	defer func() { err = errors.Join(err, store.Close()) }()
 	summary, err := pipeline.Run(ctx, store, o.pipeline)
 	o.monitor.end()
-	if err != nil && summary.Files == 0 {
+	if err != nil && !summary.HasBegun() {
 		return err
 	}
 	report := newIngestReport(o, summary, err == nil)
