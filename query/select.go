@@ -9,6 +9,7 @@ import (
 	"strings"
 
 	"swaybook/db"
+	"swaybook/pipeline/spectrum"
 )
 
 // motion is what statistics count as one: a component, or a horizontal pair.
@@ -372,8 +373,9 @@ func (p *picker) pairOf(horizontal []*db.HeldComponent, components []db.HeldComp
 	c := p.selection.Component
 	switch len(horizontal) {
 	case 2:
-		if c.IsRotated() {
-			lacking = notRotatable(horizontal[0], horizontal[1])
+		lacking = notRotatable(horizontal[0], horizontal[1])
+		if !c.IsRotated() && lacking != spectrum.ReasonDirections {
+			lacking = "" // ordinates can be combined whatever the steps and starts
 		}
 		if lacking == "" && p.damaged[components[0].RecordID] {
 			lacking = reasonDamaged

@@ -33,7 +33,9 @@ func readVersions(ctx context.Context, snapshot *db.Snapshot) (versions, error) 
 	byRecord := map[int64][]*db.Version{}
 	for i := range found {
 		c := &found[i]
-		v.motion[componentKey{c.RecordID, c.Role}] = c.MotionID
+		if c.MotionID != 0 {
+			v.motion[componentKey{c.RecordID, c.Role}] = c.MotionID
+		}
 		v.code[c.RecordID] = c.RecordCode
 		byRecord[c.RecordID] = append(byRecord[c.RecordID], c)
 	}
@@ -45,7 +47,7 @@ func readVersions(ctx context.Context, snapshot *db.Snapshot) (versions, error) 
 
 // byPreference orders records, the one first of which statistics take a motion: one
 // with both horizontals before one without, corrected before raw, then the wider
-// usable band, the longer motion, and the earlier path.
+// usable band, the longer motion, the finer step, and the earlier path.
 func byPreference(records map[int64][]*db.Version) []int64 {
 	var ids []int64
 	for id := range records {
@@ -57,7 +59,8 @@ func byPreference(records map[int64][]*db.Version) []int64 {
 			cmp.Compare(horizontals(b), horizontals(a)),
 			cmp.Compare(processingRank(a[0].Processing), processingRank(b[0].Processing)),
 			cmp.Compare(usableBand(b[0]), usableBand(a[0])),
-			cmp.Compare(float64(b[0].Samples)*b[0].StepS, float64(a[0].Samples)*a[0].StepS),
+			cmp.Compare(lengthS(b[0]), lengthS(a[0])),
+			cmp.Compare(a[0].StepS, b[0].StepS),
 			strings.Compare(a[0].SourcePath, b[0].SourcePath),
 			strings.Compare(a[0].RecordCode, b[0].RecordCode))
 	})
@@ -83,13 +86,21 @@ func processingRank(state string) int {
 	return len(order)
 }
 
-// usableBand is the logarithm of the ratio of the corner frequencies, 0 where one
-// is not stated.
+// lengthS is the time from the first sample to the last in s, to the microsecond: a copy
+// at another step must not win by rounding.
+func lengthS(v *db.Version) float64 { return math.Round(1e6*float64(v.Samples-1)*v.StepS) / 1e6 }
+
+// usableBand is the logarithm of the ratio of the corner frequencies, the higher half the
+// sampling rate where it is not stated, 0 where the lower is not.
 func usableBand(v *db.Version) float64 {
-	if v.LowCutHz == nil || v.HighCutHz == nil || !(*v.LowCutHz > 0) {
+	if v.LowCutHz == nil || !(*v.LowCutHz > 0) {
 		return 0
 	}
-	return math.Log(*v.HighCutHz / *v.LowCutHz)
+	high := 0.5 / v.StepS
+	if v.HighCutHz != nil {
+		high = min(high, *v.HighCutHz)
+	}
+	return math.Log(high / *v.LowCutHz)
 }
 
 // repeated returns, by position, the motions that one before them by preference

@@ -26,12 +26,14 @@ func TestByPreference(t *testing.T) {
 		version(5, func(*db.Version) {}), second,
 		version(6, func(v *db.Version) { v.Processing = "mean-removed" }),
 		version(7, func(v *db.Version) { v.Start = time.Now() }),
+		version(8, func(v *db.Version) { v.StepS, v.Samples = 0.02, 500 }), // 9.98 s of 9.99
+		version(9, func(v *db.Version) { v.StepS, v.Samples = 0.005, 1999 }),
 	}
 	byRecord := map[int64][]*db.Version{}
 	for i := range found {
 		byRecord[found[i].RecordID] = append(byRecord[found[i].RecordID], &found[i])
 	}
-	if got, want := fmt.Sprint(byPreference(byRecord)), "[5 4 3 6 2 1 7]"; got != want {
+	if got, want := fmt.Sprint(byPreference(byRecord)), "[5 4 3 6 2 9 1 7 8]"; got != want {
 		t.Errorf("got %s, want %s", got, want)
 	}
 }
