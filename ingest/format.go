@@ -126,6 +126,11 @@ func parse(data []byte, hints Hints) (string, []Channel, error) {
 	if err != nil && !single {
 		return name, nil, err
 	}
+	if textErr == nil {
+		if err := refuseCut(content.Text); err != nil {
+			return name, nil, err
+		}
+	}
 	channels, refused = checkAll(channels, refused)
 	return name, channels, refused.err(len(channels))
 }

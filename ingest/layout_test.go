@@ -51,7 +51,8 @@ func TestLayoutOfCounts(t *testing.T) {
 // The description that README.md shows reads the example too.
 func TestLayoutInReadme(t *testing.T) {
 	readme := string(readFile(t, filepath.Join("..", "README.md")))
-	_, rest, _ := strings.Cut(readme, "```toml\n")
+	_, rest, _ := strings.Cut(readme, "### Layouts\n")
+	_, rest, _ = strings.Cut(rest, "```toml\n")
 	text, _, ok := strings.Cut(rest, "```")
 	if !ok {
 		t.Fatal("no description in README.md")

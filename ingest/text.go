@@ -16,7 +16,8 @@ const MaxLine = 1 << 20
 // Text is a file's content split into lines, free of byte order mark, carriage
 // returns, and the NUL or Ctrl-Z padding that old systems leave at the end.
 type Text struct {
-	lines [][]byte
+	lines    [][]byte
+	endsLine bool // a line end follows the last line
 }
 
 // NewText splits data into lines at LF, CRLF or a lone CR. UTF-16 with a byte
@@ -39,7 +40,7 @@ func NewText(data []byte) (*Text, error) {
 	if err := refuseBinary(data); err != nil {
 		return nil, err
 	}
-	t := &Text{lines: splitLines(data)}
+	t := &Text{lines: splitLines(data), endsLine: len(data) > 0 && (data[len(data)-1] == '\n' || data[len(data)-1] == '\r')}
 	for i, l := range t.lines {
 		if len(l) > MaxLine {
 			return nil, refuse(i+1, "", "line of %d bytes is longer than the limit of %d", len(l), MaxLine)

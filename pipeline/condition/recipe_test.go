@@ -3,6 +3,8 @@ package condition
 import (
 	"errors"
 	"fmt"
+	"os"
+	"path/filepath"
 	"strings"
 	"testing"
 )
@@ -41,6 +43,20 @@ func TestParse(t *testing.T) {
 	}
 	if back, err := FromCanonical(r.Canonical()); err != nil || back.Hash() != r.Hash() {
 		t.Errorf("read back: %v, %v", back, err)
+	}
+}
+
+// The recipe that README.md shows is one.
+func TestRecipeInReadme(t *testing.T) {
+	readme, err := os.ReadFile(filepath.Join("..", "..", "README.md"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	_, rest, _ := strings.Cut(string(readme), "### Recipes\n")
+	_, rest, _ = strings.Cut(rest, "```toml\n")
+	text, _, _ := strings.Cut(rest, "```")
+	if r, err := Parse([]byte(text)); err != nil || len(r.Steps) != 4 {
+		t.Errorf("%d steps, %v", len(r.Steps), err)
 	}
 }
 
