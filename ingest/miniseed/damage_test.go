@@ -46,6 +46,7 @@ func TestDamage(t *testing.T) {
 		{name: "junk behind", data: append(bytes.Clone(good), bytes.Repeat([]byte("junk"), 20)...), file: "record at byte 512: no header of miniSEED"},
 		{name: "truncated", data: good[:500], file: "record at byte 0: truncated: its length is 512 bytes, 500 are there"},
 		{name: "truncated, second", data: append(bytes.Clone(good), good[:300]...), file: "record at byte 512: truncated: its length is 512 bytes, 300 are there"},
+		{name: "truncated in a header", data: append(bytes.Clone(good), good[:29]...), file: "record at byte 512: truncated: 29 bytes of its header are there"},
 		{name: "truncated, version 3", data: v3[:200], file: "record at byte 0: truncated: its length is 221 bytes, 200 are there"},
 		{name: "no blockette 1000", data: none.One(2), file: "record at byte 0: no blockette 1000: length and encoding are unknown"},
 		{name: "loop", data: with(chained, 58, 0, 48), file: "record at byte 0: blockettes make a loop: byte 48 follows byte 56"},

@@ -80,6 +80,8 @@ func (s *scanner) scan() error {
 			n, err = s.v2(at)
 		case isControl(rest):
 			err = errVolume
+		case at > 0 && beginsRecord(rest):
+			err = fmt.Errorf("truncated: %d bytes of its header are there", len(rest))
 		case at > 0 && len(rest) < v2Header:
 			s.trailing = len(rest)
 			return nil
@@ -92,6 +94,23 @@ func (s *scanner) scan() error {
 		at += n
 	}
 	return nil
+}
+
+// beginsRecord recognises the first bytes of a record whose header is not all there:
+// version 3's mark, or the number of a record of version 2 or blanks in its place.
+func beginsRecord(b []byte) bool {
+	if len(b) >= v2Header || len(b) < 3 {
+		return false
+	}
+	if b[0] == 'M' && b[1] == 'S' && b[2] == 3 {
+		return true
+	}
+	for _, c := range b[:min(6, len(b))] {
+		if c < '0' || c > '9' {
+			return false
+		}
+	}
+	return len(b) < 7 || bytes.IndexByte([]byte("DRQM"), b[6]) >= 0
 }
 
 // isControl recognises a control header of SEED.
