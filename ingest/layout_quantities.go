@@ -142,6 +142,11 @@ func (l *Layout) stated(v layoutValues, name string, column int) (statement, boo
 // lines that differ in a quantity are an error, as is a promised one that
 // decides what the numbers mean and is not there.
 func (l *Layout) find(t *Text, s span, inFile bool) (layoutValues, error) {
+	type missing struct {
+		key     quantityKey
+		pattern string
+	}
+	var missed []missing
 	v := layoutValues{text: map[quantityKey]statement{}, times: map[string]*timeParts{}}
 	for i := range l.finds {
 		f := &l.finds[i]
@@ -164,9 +169,18 @@ func (l *Layout) find(t *Text, s span, inFile bool) (layoutValues, error) {
 			}
 		}
 		for _, name := range f.gives {
-			if slices.Contains(needed, name) && !seen[name] && !f.optional {
+			if name == "" || seen[name] || f.optional {
+				continue
+			}
+			if slices.Contains(needed, name) {
 				return v, refuse(max(s.last, 1), name, "not found: no line from %d to %d gives it by the pattern %s", first, max(first, last), f.pattern)
 			}
+			missed = append(missed, missing{quantityKey{name, f.column}, f.pattern.String()})
+		}
+	}
+	for _, m := range missed {
+		if _, ok := v.text[m.key]; !ok && v.times[m.key.name] == nil {
+			v.doubts = append(v.doubts, fmt.Sprintf("%s not found by the pattern %s", m.key.name, m.pattern))
 		}
 	}
 	return v, nil

@@ -312,3 +312,17 @@ func TestLayoutOfColumnsWithHeaders(t *testing.T) {
 		t.Errorf("another form: %v, %q, %v", err, channels[1].Warnings, channels[1].Event.Date)
 	}
 }
+
+// A pattern that is not called optional and matches nothing is no secret.
+func TestLayoutPatternsThatMatchNothing(t *testing.T) {
+	layout := readFile(t, filepath.Join(layoutsDir, "quay-logger.toml"))
+	text := strings.Replace(string(readFile(t, filepath.Join(layoutsDir, "quay.txt"))), "SITE ", "SITES ", 1)
+	_, channels, err := Parse("quay.txt", []byte(text), Hints{Layouts: mustRead(t, string(layout))})
+	if err != nil {
+		t.Fatal(err)
+	}
+	found := slices.ContainsFunc(channels[0].Warnings, func(w string) bool { return strings.HasPrefix(w, `station not found by the pattern "^SITE`) })
+	if !found || channels[0].Station.Code != "" {
+		t.Errorf("station %q, warnings %q", channels[0].Station.Code, channels[0].Warnings)
+	}
+}

@@ -207,6 +207,9 @@ func (h *plainHead) describe(c *Channel) error {
 			ok = ok && !c.Start.IsZero()
 		case "siting":
 			c.Siting, ok = parseSiting(s.value)
+		case "processing":
+			state, err := parseProcessing(s.value)
+			c.Processing, ok = state, err == nil
 		case "component", "direction", "azimuth", "azimuth_deg":
 			if c.Orientation.Axis != AxisUnknown {
 				continue // the column's name says it
