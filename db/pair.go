@@ -3,6 +3,7 @@ package db
 import (
 	"context"
 	"database/sql"
+	"errors"
 	"fmt"
 	"time"
 )
@@ -144,9 +145,16 @@ func (m StoredMotion) DecodeMotion() (Motion, error) {
 	return Motion{Acceleration: samples, StepS: m.stepS, State: m.state, LowCutHz: orNaN(m.lowCutHz), HighCutHz: orNaN(m.highCutHz)}, nil
 }
 
+// ErrUnsolved says that a component's spectra have not been computed in a generation.
+var ErrUnsolved = errors.New("spectra not computed")
+
 // DecodeSD returns the SD in m, the grid's dampings outside and its periods inside: the
-// doubles that were stored. The error wraps ErrDamaged and says what is.
+// doubles that were stored. The error wraps ErrUnsolved where there are none, else
+// ErrDamaged, and says what is.
 func (m StoredMotion) DecodeSD() ([]float64, error) {
+	if len(m.sd) == 0 {
+		return nil, fmt.Errorf("%s: %w", m.role, ErrUnsolved)
+	}
 	if len(m.sd) != m.dampings {
 		return nil, m.damaged(fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings))
 	}

@@ -18,8 +18,16 @@ func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, e
 	return unsolved(ctx, s.read, generationID, "")
 }
 
-// Unsolved is Store.Unsolved of the snapshot's generation.
+// Unsolved is Store.Unsolved of the snapshot's generation. It counts first, since as a
+// rule there are none.
 func (s *Snapshot) Unsolved(ctx context.Context) ([]Unsolved, error) {
+	var components, spectra int
+	err := s.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM component),
+		(SELECT count(*) FROM spectrum WHERE generation_id = ? AND damping_position = 0 AND role IN ('`+RoleH1+`', '`+RoleH2+`', '`+RoleV+`'))`,
+		s.Generation.ID).Scan(&components, &spectra)
+	if err != nil || components == spectra {
+		return nil, err
+	}
 	return unsolved(ctx, s.tx, s.Generation.ID, "")
 }
 

@@ -180,8 +180,8 @@ func (r *reader) solve(s *solved, c ingest.Channel) error {
 	spectra, err := r.computer.compute(condition.Component{
 		Acceleration: c.Acceleration, StepS: c.StepS, State: string(c.Processing), LowCutHz: numberOrNaN(c.LowCutHz), HighCutHz: numberOrNaN(c.HighCutHz),
 	})
-	if err != nil {
-		return err
+	if _, cannot := errors.AsType[*condition.StepError](err); err != nil && !cannot {
+		return err // of a recipe that cannot be done the samples are kept
 	}
 	s.channel, s.samples, s.spectra, s.findings = withoutSamples(c), len(c.Acceleration), spectra, findingsOf(&c)
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)

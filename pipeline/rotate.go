@@ -104,6 +104,9 @@ func (rot rotation) failed(err error) rotation {
 	if e, ok := errors.AsType[*spectrum.PairError](err); ok {
 		rot.reason, rot.detail = e.Reason, e.Detail
 	}
+	if errors.Is(err, db.ErrUnsolved) {
+		rot.reason, rot.detail = "horizontal components that the recipe cannot condition", err.Error()
+	}
 	if errors.Is(err, db.ErrDamaged) {
 		rot.damaged, rot.reason = true, db.ErrDamaged.Error()
 		rot.detail = strings.TrimPrefix(err.Error(), rot.reason+": ")

@@ -96,7 +96,7 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	if err == nil {
 		err = w.rotate(ctx)
 	}
-	if err == nil {
+	if err == nil && !w.summary.isFruitless() {
 		err = store.Update(ctx, func(tx *db.Tx) error { return tx.Publish(ctx, run.generation.ID) })
 	}
 	return w.finish(ctx, err)

@@ -96,8 +96,11 @@ func (s *Summary) addRotated(r Rotated) {
 	s.Rotated++
 }
 
+// isFruitless reports whether the recipe could be carried out on none of the components.
+func (s Summary) isFruitless() bool { return s.NotRecomputed > 0 && s.Recomputed+s.Stored == 0 }
+
 // HasBegun reports whether the run came to any file, component or record.
 func (s Summary) HasBegun() bool { return s.Files+s.Recomputed+s.Uncomputed+s.Rotated+s.Unrotated > 0 }
 
-// Complete reports whether nothing was rejected.
-func (s Summary) Complete() bool { return s.Rejected == 0 && s.Channels == 0 }
+// Complete reports whether nothing was rejected, and every component was computed.
+func (s Summary) Complete() bool { return s.Rejected+s.Channels+s.NotRecomputed == 0 }

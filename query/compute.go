@@ -36,6 +36,10 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 			out.add(which[k], reasonDamaged)
 			return nil
 		}
+		if errors.Is(err, errUnconditioned) {
+			out.add(which[k], errUnconditioned.Error())
+			return nil
+		}
 		if step, ok := errors.AsType[*spectrum.StepError](err); ok {
 			out.add(which[k], step.Error())
 			return nil
@@ -82,5 +86,12 @@ func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldCompo
 	if err != nil {
 		return condition.Conditioned{}, err
 	}
-	return recipe.Apply(condition.Component(delivered))
+	out, err := recipe.Apply(condition.Component(delivered))
+	if err != nil {
+		return out, fmt.Errorf("%w: %w", errUnconditioned, err)
+	}
+	return out, nil
 }
+
+// errUnconditioned is of components on which the recipe cannot be carried out.
+var errUnconditioned = errors.New("the recipe cannot condition it")

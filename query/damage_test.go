@@ -118,7 +118,7 @@ func TestDamagedSpectraAreLeftOut(t *testing.T) {
 			alter(t, store, damage, db.RoleH2)
 			reason := reasonDamaged
 			if name == "gone" {
-				reason = reasonUncomputed
+				reason = "not computed by recipe as-delivered: run ingest --recipe with it"
 			}
 			for component, spectra := range map[Component]int{ComponentGeomean: 2, ComponentH2: 2, ComponentEach: 6} {
 				r := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Component: component}, Damping: 0.02}).Selection

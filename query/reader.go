@@ -72,34 +72,11 @@ func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position in
 			lacking = append(lacking, found...)
 			continue
 		}
-		if err := r.explain(ctx, snapshot, role, found); err != nil {
-			return nil, err
+		for _, motion := range found {
+			r.unfit.add(motion, reasonDamaged) // a component has its spectrum
 		}
 	}
 	return lacking, nil
-}
-
-// reasonUncomputed leaves out what a run that was stopped has stored for another
-// generation only.
-const reasonUncomputed = "not computed yet by this recipe: run ingest again"
-
-// explain says of motions why the spectrum of a component in this role is not stored.
-func (r *reader) explain(ctx context.Context, snapshot *db.Snapshot, role string, motions []int) error {
-	if len(motions) == 0 {
-		return nil
-	}
-	unsolved, err := snapshot.Unsolved(ctx)
-	if err != nil {
-		return err
-	}
-	for _, i := range motions {
-		reason := reasonDamaged
-		if slices.ContainsFunc(unsolved, func(u db.Unsolved) bool { return u.RecordID == r.motions[i].members[0].RecordID && u.Role == role }) {
-			reason = reasonUncomputed
-		}
-		r.unfit.add(i, reason)
-	}
-	return nil
 }
 
 // partsByRole lists what is wanted of each role, in the order of the records'

@@ -141,6 +141,8 @@ func (r *SelectionReport) object() object {
 		{"spectra", r.Spectra},
 		{"events", r.Events},
 		{"siting", string(r.Siting)},
+		{"recipe", r.Recipe},
+		{"screen", string(r.Screen)},
 	}
 	if r.Method != defaultMethod {
 		o = append(o, field{"method", r.Method.String()})

@@ -93,12 +93,14 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 	return append(append(text, '\n'), a.Remarks()...)
 }
 
-// methodLine names a method that is not the store's, in a line of its own.
+// methodLine names the recipe and the screen, and a method that is not the store's, in a
+// line of its own.
 func (r *SelectionReport) methodLine() string {
-	if r.Method == defaultMethod {
-		return ""
+	text := "recipe " + r.Recipe + "; screen " + string(r.Screen)
+	if r.Method != defaultMethod {
+		text += "; method " + r.Method.String()
 	}
-	return "method " + r.Method.String() + "\n"
+	return text + "\n"
 }
 
 func (r *SelectionReport) governingText(x *Reduction) string {

@@ -104,7 +104,7 @@ func TestSpectrumJSONKeys(t *testing.T) {
 	a := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Where: "true"}, Damping: 0.05, Percentiles: []float64{16, 97.5}})
 	var got struct {
 		Selection struct {
-			Where, Component, Siting string
+			Where, Component, Siting, Recipe, Screen string
 			Records, Spectra, Events int
 			LeftOut                  []struct {
 				Reason  string
@@ -129,7 +129,7 @@ func TestSpectrumJSONKeys(t *testing.T) {
 	if err := decoder.Decode(&got); err != nil {
 		t.Fatal(err)
 	}
-	if got.Selection.Component != "rotd50" || got.Selection.Siting != "ground" || got.Selection.Where != "true" ||
+	if got.Selection.Component != "rotd50" || got.Selection.Siting != "ground" || got.Selection.Recipe != "as-delivered" || got.Selection.Screen != "normal" || got.Selection.Where != "true" ||
 		got.Selection.Records != 3 || got.Selection.Spectra != 3 || got.Selection.Events != 2 || len(got.Selection.LeftOut) != 3 {
 		t.Errorf("selection %+v", got.Selection)
 	}

@@ -108,7 +108,7 @@ func (p *picker) addPeaks(ctx context.Context, snapshot *db.Snapshot, held []db.
 	computed := make([]*spectrum.GroundPeaks, len(lacking))
 	err := inParallel(ctx, len(lacking), func(ctx context.Context, i int) (err error) {
 		computed[i], err = lacking[i].computePeaks(ctx, snapshot)
-		if errors.Is(err, db.ErrDamaged) {
+		if errors.Is(err, db.ErrDamaged) || errors.Is(err, errUnconditioned) {
 			return nil
 		}
 		return err

@@ -57,7 +57,7 @@ type kind struct {
 	name     string
 	of       func(*qualityFlags) *bool // where an expression sees it
 	screen   Screen                    // the mildest that leaves it out, "" for none
-	isMended bool                      // by the steps of a recipe
+	isMended bool                      // by a high-pass filter of the recipe
 }
 
 // flags are all of them, in the order in which they count as reasons.
@@ -100,7 +100,7 @@ func (s Screen) screened(m *motion) string {
 			continue
 		}
 		for _, c := range m.members {
-			if known.isMended && c.Conditioning != nil {
+			if known.isMended && c.Conditioning != nil && c.Conditioning.LongS != nil {
 				continue
 			}
 			if slices.ContainsFunc(c.Findings, func(f db.Finding) bool { return f.Flag == known.name }) {

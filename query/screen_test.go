@@ -65,13 +65,18 @@ func TestScreens(t *testing.T) {
 	}
 }
 
-// What a recipe mends does not count against what it mended.
+// What a high-pass filter mends does not count against what it mended; other steps mend
+// nothing.
 func TestMendedFindings(t *testing.T) {
-	mended := &db.HeldComponent{Conditioning: &db.Conditioning{StepS: 0.01}}
+	mended := &db.HeldComponent{Conditioning: &db.Conditioning{StepS: 0.01, LongS: ptr(8.0)}}
 	mended.Findings = []db.Finding{{Flag: "drift"}, {Flag: "offset"}, {Flag: "baseline_step"}}
 	m := motion{members: []*db.HeldComponent{mended}}
 	if got := ScreenStrict.screened(&m); got != "" {
 		t.Errorf("conditioned: %s", got)
+	}
+	mended.Conditioning.LongS = nil
+	if got := ScreenStrict.screened(&m); got != "offset" {
+		t.Errorf("tapered: %q", got)
 	}
 	mended.Conditioning = nil
 	if got := ScreenStrict.screened(&m); got != "offset" {

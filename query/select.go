@@ -35,6 +35,7 @@ type picked struct {
 	hint    string         // where nothing is left
 	// verticals are the vertical components by record.
 	verticals map[int64]*db.HeldComponent
+	screen    Screen
 	// ignoresBand says that ordinates outside the usable band count.
 	ignoresBand bool
 }
@@ -66,8 +67,8 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		return nil, err
 	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, details: details}
-	p.hint, p.leftOut, p.ignoresBand = p.hintOf(), map[string]int{}, s.IgnoreUsableBand
-	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting}
+	p.hint, p.leftOut, p.ignoresBand, p.screen = p.hintOf(), map[string]int{}, s.IgnoreUsableBand, s.Screen
+	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting, Recipe: snapshot.Generation.Recipe.Name, Screen: s.Screen}
 	p.motions = make([]motion, 0, len(held))
 	p.verticals = map[int64]*db.HeldComponent{}
 	for i := range held {
@@ -76,6 +77,9 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		}
 	}
 	if err := p.findRotated(ctx, snapshot, details, held); err != nil {
+		return nil, err
+	}
+	if err := p.findUnsolved(ctx, snapshot); err != nil {
 		return nil, err
 	}
 	for components := range byRecord(held) {
@@ -139,6 +143,29 @@ type picker struct {
 	// the records of those whose peaks could not be computed.
 	rotated map[string]map[int64]db.Peaks
 	damaged map[int64]bool
+	// unsolved are the components whose spectra the generation lacks, and uncomputed the
+	// reason why they are left out.
+	unsolved   map[componentKey]bool
+	uncomputed string
+}
+
+// findUnsolved notes what a run that was stopped, or that served another recipe, has
+// stored and not computed by the published one.
+func (p *picker) findUnsolved(ctx context.Context, snapshot *db.Snapshot) error {
+	found, err := snapshot.Unsolved(ctx)
+	if err != nil || len(found) == 0 {
+		return err
+	}
+	p.unsolved = map[componentKey]bool{}
+	for _, u := range found {
+		p.unsolved[componentKey{u.RecordID, u.Role}] = true
+	}
+	p.uncomputed = fmt.Sprintf("not computed by recipe %s: run ingest --recipe with it", snapshot.Generation.Recipe.Name)
+	return nil
+}
+
+func (p *picker) isUnsolved(m *motion) bool {
+	return slices.ContainsFunc(m.members, func(c *db.HeldComponent) bool { return p.unsolved[componentKey{c.RecordID, c.Role}] })
 }
 
 // take looks at the components of one record. A record counts once as unmet if
@@ -185,6 +212,8 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
+	case p.isUnsolved(m):
+		return p.uncomputed, false, nil
 	case !p.selection.IncludeUnknownDirections && m.hasUnknownDirection():
 		return reasonUnknownDirection, false, nil
 	case p.selection.Screen.screened(m) != "":
@@ -265,7 +294,8 @@ func (p *picked) drop(reasons map[int]string) {
 // finish counts what the motions are of. The error is an EmptyError where there is
 // none.
 func (p *picked) finish() error {
-	r := SelectionReport{Where: p.report.Where, Component: p.report.Component, Siting: p.report.Siting, Spectra: len(p.motions)}
+	r := p.report
+	r.Spectra, r.Records, r.LeftOut, r.Notes = len(p.motions), 0, nil, nil
 	for _, reason := range slices.Sorted(maps.Keys(p.leftOut)) {
 		r.LeftOut = append(r.LeftOut, LeftOut{Reason: reason, Records: p.leftOut[reason]})
 	}

@@ -216,6 +216,8 @@ type SelectionReport struct {
 	Where     string
 	Component Component
 	Siting    Siting
+	Recipe    string // by which the components are conditioned
+	Screen    Screen
 	Method    Method
 	Records   int // that contribute
 	Spectra   int // that contribute

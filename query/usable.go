@@ -10,8 +10,12 @@ import (
 // usable is the range of periods in s over which a motion's spectrum can be believed.
 type usable struct{ fromS, toS float64 }
 
-// has reports whether the period is in the range, which includes its ends.
-func (u usable) has(periodS float64) bool { return periodS >= u.fromS && periodS <= u.toS }
+// has reports whether the period is in the range, which includes its ends: quotients of
+// decimals, which a period may miss by rounding.
+func (u usable) has(periodS float64) bool {
+	const rounding = 1e-9
+	return periodS >= u.fromS*(1-rounding) && periodS <= u.toS*(1+rounding)
+}
 
 // usableBand is that of the motion's members together.
 func (m *motion) usableBand() usable {

@@ -14,8 +14,11 @@ import (
 func (s *source) overHorizontal(ctx context.Context, p *picked, horizontal *ordinates) (*ordinates, error) {
 	without := map[int]string{}
 	for i := range p.motions {
-		if p.verticals[p.motions[i].members[0].RecordID] == nil {
+		v := p.verticals[p.motions[i].members[0].RecordID]
+		if v == nil {
 			without[i] = "no v component"
+		} else if reason := p.screen.screened(&motion{members: []*db.HeldComponent{v}}); reason != "" {
+			without[i] = "screened out: " + reason
 		}
 	}
 	horizontal = horizontal.without(without)
@@ -36,10 +39,17 @@ func (s *source) overHorizontal(ctx context.Context, p *picked, horizontal *ordi
 			unfit[i] = reason
 		}
 	}
-	for i, sd := range horizontal.sd {
-		horizontal.sd[i] = vertical.sd[i] / sd
-		if math.IsInf(horizontal.sd[i], 0) {
-			horizontal.sd[i] = math.NaN() // a horizontal of rest
+	known := make([]bool, len(verticals))
+	for k, sd := range horizontal.sd {
+		horizontal.sd[k] = vertical.sd[k] / sd
+		if math.IsInf(horizontal.sd[k], 0) {
+			horizontal.sd[k] = math.NaN() // a horizontal of rest
+		}
+		known[k%len(verticals)] = known[k%len(verticals)] || !math.IsNaN(horizontal.sd[k])
+	}
+	for i, isKnown := range known {
+		if _, isOut := unfit[i]; !isKnown && !isOut {
+			unfit[i] = reasonUnusable
 		}
 	}
 	return horizontal.without(unfit), p.leaveOut(unfit)

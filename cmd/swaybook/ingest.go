@@ -83,6 +83,9 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	if n := c.Int("workers"); c.IsSet("workers") && (n < 1 || n > maxWorkers) {
 		return o, usagef("--workers %d: want 1 to %d", n, maxWorkers)
 	}
+	if _, err := os.Stat(o.store); err != nil && len(o.pipeline.Paths) == 0 {
+		return o, fmt.Errorf("find store: %w", err) // nothing is held that could be conditioned
+	}
 	for _, path := range o.pipeline.Paths {
 		if _, err := os.Stat(path); err != nil {
 			return o, fmt.Errorf("find records: %w", err) // before a store is made

@@ -219,17 +219,29 @@ func (w *work) filter(f signal.Filter) {
 	f.TwoWay(w.Acceleration)
 }
 
-// quietShare is the share of the greatest acceleration below which the ends of pads say
-// nothing: their part of a displacement of period T is below 1e-5·(T/2π)²·PGA.
-const quietShare = 1e-5
+// quietShare is the share of PGA below which the ends of pads say nothing, and restShare
+// the share of PGD that may be lost where the motion is taken to begin at rest: by the
+// displacement there, or by the velocity there until the end.
+const (
+	quietShare = 1e-5
+	restShare  = 1e-3
+)
 
 // cutPads takes the ends of the pads off that hold next to nothing.
 func (w *work) cutPads() {
-	limit := quietShare * greatest(w.Acceleration)
 	n := len(w.Acceleration)
 	from, to := 0, n
-	for from < w.before && math.Abs(w.Acceleration[from]) <= limit {
-		from++
+	limit := quietShare * greatest(w.Acceleration)
+	if w.before > 0 {
+		v := signal.Integrate(nil, w.Acceleration, w.StepS)
+		d := signal.Integrate(nil, v, w.StepS)
+		lost, lengthS := restShare*greatest(d), float64(n)*w.StepS
+		isRest := func(i int) bool {
+			return math.Abs(w.Acceleration[i]) <= limit && math.Abs(d[i]) <= lost && math.Abs(v[i])*lengthS <= lost
+		}
+		for from < w.before && isRest(from) {
+			from++
+		}
 	}
 	for to > n-w.after && math.Abs(w.Acceleration[to-1]) <= limit {
 		to--

@@ -290,6 +290,33 @@ func BenchmarkStandard(b *testing.B) {
 	b.ReportMetric(float64(n)/float64(len(x)), "length-ratio")
 }
 
+// PGD is that of the motion with its pads whole: a motion of high frequencies behind a low
+// corner has a displacement of the corner's period in front, which must not be cut.
+func TestCutPadsKeepTheDisplacement(t *testing.T) {
+	const stepS = 0.01
+	for seed := range uint64(4) {
+		x := motion(seed, stepS, 0.2, 5, 20)
+		r := step(Step{Do: KindHighPass, Order: 4, CornerHz: 0.1})
+		got, err := r.Apply(raw(x, stepS))
+		if err != nil {
+			t.Fatal(err)
+		}
+		f, err := signal.HighPass(4, 0.1, stepS)
+		if err != nil {
+			t.Fatal(err)
+		}
+		pad := int(f.PadS() / stepS)
+		whole := make([]float64, len(x)+2*pad)
+		copy(whole[pad:], x)
+		f.TwoWay(whole)
+		_, pgv, pgd := spectrum.Peaks(stepS, got.Acceleration)
+		_, wantV, wantD := spectrum.Peaks(stepS, whole)
+		if math.Abs(pgv/wantV-1) > 0.005 || math.Abs(pgd/wantD-1) > 0.005 {
+			t.Errorf("seed %d: PGV %.4g and PGD %.4g, with whole pads %.4g and %.4g; %d samples of %d", seed, pgv, pgd, wantV, wantD, len(got.Acceleration), len(x))
+		}
+	}
+}
+
 // A network's corrected version, filtered with corners of its own, and the raw one after
 // the standard recipe agree over the periods at which both can be believed.
 func TestRawAndCorrectedAgree(t *testing.T) {
@@ -300,17 +327,22 @@ func TestRawAndCorrectedAgree(t *testing.T) {
 		network := Recipe{Name: "network", States: []string{"raw"}, Steps: []Step{
 			{Do: KindHighPass, Order: 4, CornerHz: 0.12}, {Do: KindLowPass, Order: 4, CornerHz: 30},
 		}}
-		delivered, err := network.Apply(raw(clean, stepS))
+		filtered, err := network.Apply(raw(clean, stepS))
 		if err != nil {
 			t.Fatal(err)
 		}
 		corrected, err := Standard().Apply(Component{
-			Acceleration: delivered.Acceleration, StepS: stepS, State: "corrected", LowCutHz: delivered.LowCutHz, HighCutHz: delivered.HighCutHz,
+			Acceleration: filtered.Acceleration, StepS: stepS, State: "corrected", LowCutHz: filtered.LowCutHz, HighCutHz: filtered.HighCutHz,
 		})
 		if err != nil {
 			t.Fatal(err)
 		}
-		ours, err := Standard().Apply(raw(recorded(seed, clean), stepS))
+		delivered := recorded(seed, clean)
+		for i := range delivered {
+			along := float64(i) / float64(len(delivered))
+			delivered[i] += 0.1 * along * along // a drift that is no straight line
+		}
+		ours, err := Standard().Apply(raw(delivered, stepS))
 		if err != nil {
 			t.Fatal(err)
 		}

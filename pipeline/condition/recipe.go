@@ -98,9 +98,9 @@ func AsDelivered() Recipe {
 func Standard() Recipe {
 	return Recipe{
 		Name: "standard", States: []string{"raw", "mean-removed"}, LongShare: 0.6,
-		Explain: "raw components: mean of what precedes the motion, tapers, high-pass and low-pass filter with corners by signal to noise; others as delivered",
+		Explain: "raw components: parabolic trend, tapers, high-pass and low-pass filter with corners by signal to noise; others as delivered",
 		Steps: []Step{
-			{Do: KindMean, Window: WindowPreEvent},
+			{Do: KindTrend, Degree: 2},
 			{Do: KindTaper, Share: 0.02},
 			{Do: KindHighPass, Order: 4, ByNoise: &NoiseRule{Ratio: 3, LeastHz: 0.05, MostHz: 1, ElseHz: 0.1}},
 			{Do: KindLowPass, Order: 4, ByNoise: &NoiseRule{Ratio: 3, LeastHz: 15, MostHz: 50, ElseHz: 0}},
