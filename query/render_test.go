@@ -105,8 +105,8 @@ func TestSpectrumJSONKeys(t *testing.T) {
 	var got struct {
 		Selection struct {
 			Where, Component, Siting, Recipe, Screen string
-			Records, Spectra, Events int
-			LeftOut                  []struct {
+			Records, Spectra, Events                 int
+			LeftOut                                  []struct {
 				Reason  string
 				Records int
 			} `json:"left_out"`

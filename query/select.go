@@ -329,12 +329,15 @@ func (p *picked) finish() error {
 }
 
 // noteBand says what became of ordinates outside the usable band.
-func (p *picked) noteBand(partly int) {
+func (p *picked) noteBand(partly, coarse int) {
 	switch {
 	case p.ignoresBand:
 		p.report.Notes = append(p.report.Notes, "usable bands ignored: ordinates count at periods that filters and sampling have emptied")
 	case partly > 0:
 		p.report.Notes = append(p.report.Notes, countOf(partly, "spectrum counts", "spectra count")+" at a part of the periods only: the usable band")
+	}
+	if coarse > 0 {
+		p.report.Notes = append(p.report.Notes, countOf(coarse, "spectrum has", "spectra have")+" periods of fewer than ten steps, where it may be low: oversample by a recipe")
 	}
 }
 

@@ -58,10 +58,10 @@ func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must i
 	if err != nil {
 		return nil, err
 	}
-	partly := 0
+	partly, coarse := 0, 0
 	if !p.ignoresBand {
 		var without map[int]string
-		without, partly = o.keepUsable(p.motions, must)
+		without, partly, coarse = o.keepUsable(p.motions, must)
 		for i, reason := range without {
 			if _, isOut := unfit[i]; !isOut {
 				unfit[i] = reason
@@ -70,7 +70,7 @@ func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must i
 	}
 	o = o.without(unfit)
 	err = p.leaveOut(unfit)
-	p.noteBand(partly)
+	p.noteBand(partly, coarse)
 	return o, err
 }
 

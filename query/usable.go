@@ -7,8 +7,9 @@ import (
 	"swaybook/pipeline/condition"
 )
 
-// usable is the range of periods in s over which a motion's spectrum can be believed.
-type usable struct{ fromS, toS float64 }
+// usable is the range of periods in s over which a motion's spectrum can be believed, and
+// the period below which it may be low.
+type usable struct{ fromS, toS, coarseS float64 }
 
 // has reports whether the period is in the range, which includes its ends: quotients of
 // decimals, which a period may miss by rounding.
@@ -19,10 +20,11 @@ func (u usable) has(periodS float64) bool {
 
 // usableBand is that of the motion's members together.
 func (m *motion) usableBand() usable {
-	u := usable{0, math.Inf(1)}
+	u := usable{toS: math.Inf(1)}
 	for _, c := range m.members {
-		fromS, toS := conditioned(c).UsableBand()
-		u = usable{max(u.fromS, fromS), min(u.toS, toS)}
+		k := conditioned(c)
+		fromS, toS := k.UsableBand()
+		u = usable{max(u.fromS, fromS), min(u.toS, toS), max(u.coarseS, condition.DoubtfulSteps*k.StepS)}
 	}
 	return u
 }
@@ -52,15 +54,16 @@ const reasonUnusable = "outside the usable band of periods"
 // keepUsable takes the ordinates out, as NaN, that lie outside their motion's usable
 // band, and returns the motions, by position, that have none left, or none at the
 // period of position must where that is not negative. partly counts the other motions
-// that lost some.
-func (o *ordinates) keepUsable(motions []motion, must int) (without map[int]string, partly int) {
+// that lost some, and coarse those that keep some of few steps a period.
+func (o *ordinates) keepUsable(motions []motion, must int) (without map[int]string, partly, coarse int) {
 	without = map[int]string{}
 	for i := range motions {
 		band := motions[i].usableBand()
-		kept := 0
+		kept, isCoarse := 0, false
 		for p, t := range o.periodsS {
 			if band.has(t) {
 				kept++
+				isCoarse = isCoarse || t < band.coarseS*(1-1e-9)
 			} else {
 				o.sd[p*o.motions+i] = math.NaN()
 			}
@@ -68,9 +71,13 @@ func (o *ordinates) keepUsable(motions []motion, must int) (without map[int]stri
 		switch {
 		case kept == 0, must >= 0 && !band.has(o.periodsS[must]):
 			without[i] = reasonUnusable
+			continue
 		case kept < len(o.periodsS):
 			partly++
 		}
+		if isCoarse {
+			coarse++
+		}
 	}
-	return without, partly
+	return without, partly, coarse
 }

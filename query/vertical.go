@@ -34,7 +34,7 @@ func (s *source) overHorizontal(ctx context.Context, p *picked, horizontal *ordi
 		return nil, err
 	}
 	if !p.ignoresBand {
-		unusable, _ := vertical.keepUsable(verticals, -1)
+		unusable, _, _ := vertical.keepUsable(verticals, -1)
 		for i, reason := range unusable {
 			unfit[i] = reason
 		}

@@ -2,13 +2,15 @@ package condition
 
 import "math"
 
-// The shares of corners at which a band ends, and the steps a period below which a
-// spectrum is doubtful (common practice).
+// The shares of corners at which a band ends (common practice).
 const (
-	longShare     = 0.8
-	shortShare    = 0.8
-	DoubtfulSteps = 10
+	longShare  = 0.8
+	shortShare = 0.8
 )
+
+// DoubtfulSteps are the steps a period below which ordinates may be low, since the ground
+// goes straight between samples (common practice).
+const DoubtfulSteps = 10
 
 // UsableBand returns the periods in s between which the component's spectrum can be
 // believed:

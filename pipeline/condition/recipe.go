@@ -6,6 +6,7 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"maps"
 	"math"
 	"regexp"
 	"slices"
@@ -175,8 +176,13 @@ func (r Recipe) Validate() error {
 			return err
 		}
 	}
+	finer := 1
 	for i, s := range r.Steps {
-		if err := s.validate(); err != nil {
+		err := s.validate()
+		if finer *= max(1, s.Factor); err == nil && finer > maxFactor {
+			err = fmt.Errorf("factor: %d times finer with the steps before, more than %d", finer, maxFactor)
+		}
+		if err != nil {
 			return &StepError{Step: i + 1, Kind: s.Do, Err: err}
 		}
 	}
@@ -207,8 +213,9 @@ func (s Step) validate() error {
 	if !ok {
 		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, high-pass, low-pass, oversample")
 	}
-	for name, isSet := range s.set() {
-		if isSet && !slices.Contains(fields, name) {
+	set := s.set()
+	for _, name := range slices.Sorted(maps.Keys(set)) {
+		if set[name] && !slices.Contains(fields, name) {
 			return fmt.Errorf("%s: not a field of this step; it takes %s", name, strings.Join(fields, ", "))
 		}
 	}
@@ -227,7 +234,7 @@ func (s Step) validate() error {
 	return s.validateFilter()
 }
 
-// maxFactor bounds how much finer steps become.
+// maxFactor bounds how much finer steps become, by one step of a recipe and by all.
 const maxFactor = 10
 
 func (s Step) validateTrim() error {

@@ -97,6 +97,7 @@ func TestParseRefuses(t *testing.T) {
 		head + "do = \"high-pass\"\norder = 4":                                                         "line 2: step 1 (high-pass): corner_hz, by_noise: one of both is needed",
 		head + "do = \"high-pass\"\norder = 9\ncorner_hz = 1":                                          "line 2: step 1 (high-pass): order: 9 is outside 1 to 8",
 		head + "do = \"low-pass\"\norder = 4\n[step.by_noise]\nratio = 3\nleast_hz = 20\nmost_hz = 10": "line 2: step 1 (low-pass): by_noise.most_hz: 10 is outside 20 to 1000",
+		head + "do = \"oversample\"\nfactor = 4\n[[step]]\ndo = \"oversample\"\nfactor = 4":            "line 5: step 2 (oversample): factor: 16 times finer with the steps before, more than 10",
 		head + "do = \"trim\"\nfrom_s = 5\nto_s = 4":                                                   "line 2: step 1 (trim): to_s: 4 s is not after from_s",
 		"name = \"Own recipe\"":                "name: ",
 		"name = \"standard\"":                  `name: "standard" is a recipe that is built in`,

@@ -92,12 +92,6 @@ func first(w float64, high bool) section {
 	return s
 }
 
-// CornerHz returns the corner, and Order the order, of one passage.
-func (f Filter) CornerHz() float64 { return f.cornerHz }
-
-// Order returns the order of one passage.
-func (f Filter) Order() int { return f.order }
-
 // PadS returns the length in s of the zeros that the motion needs at either end, so
 // that what both passages make of it has died away there: 1.5·n/f, n the order of both
 // passages and f the corner.
@@ -146,18 +140,4 @@ func (s section) backward(x []float64) {
 		v = float64(s.b2*in) - float64(s.a2*out)
 		x[i] = out
 	}
-}
-
-// Gain returns the amplitude that TwoWay leaves of a long harmonic motion of
-// frequencyHz sampled every stepS seconds, from the sections themselves.
-func (f Filter) Gain(frequencyHz, stepS float64) float64 {
-	sin, cos := math.Sincos(2 * math.Pi * frequencyHz * stepS)
-	sin2, cos2 := math.Sincos(4 * math.Pi * frequencyHz * stepS)
-	power := 1.0
-	for _, s := range f.sections {
-		over := math.Hypot(s.b0+float64(s.b1*cos)+float64(s.b2*cos2), float64(s.b1*sin)+float64(s.b2*sin2))
-		under := math.Hypot(1+float64(s.a1*cos)+float64(s.a2*cos2), float64(s.a1*sin)+float64(s.a2*sin2))
-		power *= over / under
-	}
-	return power * power
 }
