@@ -67,3 +67,33 @@ func (s *Snapshot) Disputed(ctx context.Context) ([]Disputed, error) {
 	}
 	return out, nil
 }
+
+// ScaledVersions are two components that hold one motion, the samples of the second
+// Scale times those of the first.
+type ScaledVersions struct {
+	Role                  string
+	FirstCode, SecondCode string // of the records
+	FirstPath, SecondPath string
+	Scale                 float64
+}
+
+// ScaledVersions returns the versions of one motion of which one is more than a share
+// larger than the other, by the records' codes. Polarity does not count.
+func (s *Snapshot) ScaledVersions(ctx context.Context, share float64) ([]ScaledVersions, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT a.role, ra.code, rb.code, fa.path, fb.path, l.scale
+		FROM likeness l
+		JOIN component a ON a.id = l.first_id JOIN component b ON b.id = l.second_id AND b.motion_id = a.motion_id
+		JOIN record ra ON ra.id = a.record_id JOIN record rb ON rb.id = b.record_id
+		JOIN source_file fa ON fa.id = a.source_id JOIN source_file fb ON fb.id = b.source_id
+		WHERE abs(l.scale) NOT BETWEEN 1 / (1 + ?1) AND 1 + ?1 ORDER BY ra.code, rb.code, a.role`, share)
+	if err != nil {
+		return nil, fmt.Errorf("read versions: %w", err)
+	}
+	found, err := collect(rows, func(v *ScaledVersions) []any {
+		return []any{&v.Role, &v.FirstCode, &v.SecondCode, &v.FirstPath, &v.SecondPath, &v.Scale}
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read versions: %w", err)
+	}
+	return found, nil
+}

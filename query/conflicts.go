@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"fmt"
 	"io"
 	"math"
 	"strconv"
@@ -37,12 +38,32 @@ func Conflicts(ctx context.Context, store *db.Store) (*ConflictsAnswer, error) {
 	answer := &ConflictsAnswer{}
 	err := view(ctx, store, func(snapshot *db.Snapshot) error {
 		disputed, err := snapshot.Disputed(ctx)
+		if err != nil {
+			return err
+		}
 		for _, d := range disputed {
 			answer.add(d)
+		}
+		scaled, err := snapshot.ScaledVersions(ctx, scaleShare)
+		for i := range scaled {
+			answer.addScaled(&scaled[i])
 		}
 		return err
 	})
 	return answer, err
+}
+
+// scaleShare is how much larger one version of a motion may be than another before both
+// cannot be right: processing changes amplitudes by less (common practice).
+const scaleShare = 0.1
+
+// addScaled lists versions of one motion that differ by a factor: one has a wrong unit or
+// scale, and statistics take one of them.
+func (a *ConflictsAnswer) addScaled(v *db.ScaledVersions) {
+	a.Rows = append(a.Rows, ConflictRow{
+		Subject: db.SubjectRecord, Code: v.FirstCode, Attribute: "amplitude of " + v.Role, Taken: "1", TakenFrom: db.ByHeader, TakenFile: orNull(v.FirstPath),
+		Other: fmt.Sprintf("%.4g times, in version %s", math.Abs(v.Scale), v.SecondCode), OtherFrom: db.ByHeader, OtherFile: orNull(v.SecondPath),
+	})
 }
 
 func (a *ConflictsAnswer) add(d db.Disputed) {
