@@ -3,6 +3,7 @@ package ingest
 import (
 	"errors"
 	"fmt"
+	"slices"
 	"strings"
 
 	"swaybook/ingest/fdsnxml"
@@ -64,6 +65,12 @@ var formats = []Format{
 	smc{},
 	newZealand{},
 	miniSEED{},
+}
+
+// IsOfOneArchive reports whether files of the format come from one archive or network,
+// which gives events their codes; others, text columns of any kind, come from anybody.
+func IsOfOneArchive(format string) bool {
+	return slices.ContainsFunc(formats, func(f Format) bool { return f.Info().Name == format && f != Format(at2{}) })
 }
 
 // Formats describes all formats that are read, those of the layouts after the

@@ -145,7 +145,7 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 // the catalogue for that one count.
 func (r *reader) tell(file ingest.Found, format, stem string, c *ingest.Channel) solved {
 	header := *c
-	s := solved{accounts: []account{{by: db.ByHeader, source: file.Path, scheme: format, channel: withoutSamples(header)}}}
+	s := solved{accounts: []account{{by: db.ByHeader, source: file.Path, scheme: schemeOf(format, header.Station.Network), channel: withoutSamples(header)}}}
 	s.stated, s.matched = r.describe(file, stem, c)
 	accounts, doubt := metadataAccounts(r.hints.Metadata, c, len(c.Acceleration))
 	if q := quakeIn(accounts); q != nil && isWithoutEvent(c) {
@@ -158,6 +158,19 @@ func (r *reader) tell(file ingest.Found, format, stem string, c *ingest.Channel)
 		s.accounts = append(s.accounts, catalogueAccount(s.stated))
 	}
 	return s
+}
+
+// schemeOf is whose codes the events of a format's files have: those of the archive that
+// the format is of, or, where everybody writes his own, of the station's network, "" where
+// that is not stated.
+func schemeOf(format, network string) string {
+	if ingest.IsOfOneArchive(format) {
+		return format
+	}
+	if network == "" {
+		return ""
+	}
+	return format + "/" + network
 }
 
 // describe completes what the file's content says by the catalogue, which has the
