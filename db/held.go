@@ -188,6 +188,34 @@ func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (
 	return out, nil
 }
 
+// Flag adds to components that were read without DetailFindings those findings that have
+// one of these flags, the flag alone: a question over thousands of components screens for
+// a few flags, which few have.
+func (s *Snapshot) Flag(ctx context.Context, components []HeldComponent, flags []string) error {
+	flagged := map[roleOf][]Finding{}
+	for _, flag := range flags {
+		rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role FROM finding f JOIN component c ON c.id = f.component_id WHERE f.flag = ?`, flag)
+		if err != nil {
+			return fmt.Errorf("read findings: %w", err)
+		}
+		found, err := collect(rows, func(k *roleOf) []any { return []any{&k.record, &k.role} })
+		if err != nil {
+			return fmt.Errorf("read findings: %w", err)
+		}
+		for _, k := range found {
+			flagged[k] = append(flagged[k], Finding{Flag: flag})
+		}
+	}
+	if len(flagged) == 0 {
+		return nil
+	}
+	for i := range components {
+		c := &components[i]
+		c.Findings = flagged[roleOf{c.RecordID, c.Role}]
+	}
+	return nil
+}
+
 // measures are those of the generation but for the peaks.
 func (s *Snapshot) measures(ctx context.Context, condition string, args []any) (map[roleOf]map[string]float64, error) {
 	where, args := s.ofRecords(condition, args)

@@ -30,3 +30,4 @@ CREATE TABLE finding (
     words        TEXT NOT NULL,
     PRIMARY KEY (component_id, flag)
 ) STRICT, WITHOUT ROWID;
+CREATE INDEX finding_flag ON finding (flag);

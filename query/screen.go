@@ -90,13 +90,25 @@ func qualityOf(components ...*db.HeldComponent) (q qualityFlags) {
 	return q
 }
 
+// includes reports whether the screen leaves motions out for a kind of finding.
+func (s Screen) includes(k kind) bool {
+	return s != ScreenNone && (k.screen == ScreenNormal || k.screen == s)
+}
+
+// flags are those for which the screen leaves motions out.
+func (s Screen) flags() (names []string) {
+	for _, known := range flags {
+		if s.includes(known) {
+			names = append(names, known.name)
+		}
+	}
+	return names
+}
+
 // screened returns the finding for which the screen leaves the motion out, "" for none.
 func (s Screen) screened(m *motion) string {
-	if s == ScreenNone {
-		return ""
-	}
 	for _, known := range flags {
-		if known.screen != ScreenNormal && known.screen != s {
+		if !s.includes(known) {
 			continue
 		}
 		for _, c := range m.members {

@@ -60,9 +60,12 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		details |= db.DetailBand
 	}
 	if s.Screen != ScreenNone {
-		details |= db.DetailFindings | db.DetailBand // by which what a recipe mended is known
+		details |= db.DetailBand // by which what a recipe mended is known
 	}
 	held, err := snapshot.Components(ctx, details)
+	if err == nil && details&db.DetailFindings == 0 {
+		err = snapshot.Flag(ctx, held, s.Screen.flags())
+	}
 	if err != nil {
 		return nil, err
 	}
@@ -205,6 +208,7 @@ func (p *picker) take(components []db.HeldComponent) error {
 func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err error) {
 	unknown, met, err := p.ask(m)
 	siting := m.members[0].Record.Siting
+	flag := p.selection.Screen.screened(m)
 	switch {
 	case err != nil || !met:
 		return "", false, err
@@ -216,8 +220,8 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return p.uncomputed, false, nil
 	case !p.selection.IncludeUnknownDirections && m.hasUnknownDirection():
 		return reasonUnknownDirection, false, nil
-	case p.selection.Screen.screened(m) != "":
-		return "screened out: " + p.selection.Screen.screened(m), false, nil
+	case flag != "":
+		return "screened out: " + flag, false, nil
 	case p.details&db.DetailPeaks != 0 && m.hasDamagedPeaks():
 		return reasonDamaged, false, nil
 	case unknown != "":
