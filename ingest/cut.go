@@ -63,20 +63,18 @@ type fieldSpan struct{ from, to int }
 func numberFields(line []byte) []fieldSpan {
 	var out []fieldSpan
 	for i := 0; i < len(line); {
-		if isFieldEnd(line[i]) {
+		if isSeparator(rune(line[i])) {
 			i++
 			continue
 		}
 		from := i
-		for i < len(line) && !isFieldEnd(line[i]) {
+		for i < len(line) && !isSeparator(rune(line[i])) {
 			i++
 		}
 		out = append(out, fieldSpan{from, i})
 	}
 	return out
 }
-
-func isFieldEnd(c byte) bool { return c == ' ' || c == '\t' || c == ',' || c == ';' }
 
 // sameEnds reports whether fields of two lines end in the same columns.
 func sameEnds(a, b []fieldSpan) bool {
