@@ -231,11 +231,11 @@ const (
 func (w *work) cutPads() {
 	n := len(w.Acceleration)
 	from, to := 0, n
-	limit := quietShare * greatest(w.Acceleration)
+	limit := quietShare * signal.Greatest(w.Acceleration)
 	if w.before > 0 {
 		v := signal.Integrate(nil, w.Acceleration, w.StepS)
 		d := signal.Integrate(nil, v, w.StepS)
-		lost, lengthS := restShare*greatest(d), float64(n)*w.StepS
+		lost, lengthS := restShare*signal.Greatest(d), float64(n)*w.StepS
 		isRest := func(i int) bool {
 			return math.Abs(w.Acceleration[i]) <= limit && math.Abs(d[i]) <= lost && math.Abs(v[i])*lengthS <= lost
 		}
@@ -249,12 +249,4 @@ func (w *work) cutPads() {
 	w.Acceleration = w.Acceleration[from:to]
 	w.LeadS -= float64(float64(from) * w.StepS)
 	w.before, w.after = w.before-from, w.after-(n-to)
-}
-
-func greatest(x []float64) float64 {
-	top := 0.0
-	for _, v := range x {
-		top = max(top, math.Abs(v))
-	}
-	return top
 }

@@ -33,7 +33,7 @@ func motion(seed uint64, stepS, quietS, lowHz, highHz float64) []float64 {
 		f.TwoWay(x)
 	}
 	x = x[pad : pad+n]
-	scale := 2 / greatest(x)
+	scale := 2 / signal.Greatest(x)
 	for i := range x {
 		x[i] *= scale
 	}
@@ -159,7 +159,7 @@ func TestFiltersShiftNothing(t *testing.T) {
 			t.Fatal(err)
 		}
 		at := 200 + int(math.Round(got.LeadS/got.StepS))
-		if greatest(got.Acceleration) != math.Abs(got.Acceleration[at]) {
+		if signal.Greatest(got.Acceleration) != math.Abs(got.Acceleration[at]) {
 			t.Errorf("%s: the pulse is not at sample %d", s.Do, at)
 		}
 		for k := 1; k < 100; k++ {
@@ -167,7 +167,7 @@ func TestFiltersShiftNothing(t *testing.T) {
 				t.Fatalf("%s: %g before and %g after the pulse", s.Do, before, after)
 			}
 		}
-		if end := max(math.Abs(got.Acceleration[0]), math.Abs(got.Acceleration[len(got.Acceleration)-1])); end > 2*quietShare*greatest(got.Acceleration) {
+		if end := max(math.Abs(got.Acceleration[0]), math.Abs(got.Acceleration[len(got.Acceleration)-1])); end > 2*quietShare*signal.Greatest(got.Acceleration) {
 			t.Errorf("%s: cut where it is %g", s.Do, end)
 		}
 	}
@@ -268,7 +268,7 @@ func TestOddMotions(t *testing.T) {
 		for _, stepS := range []float64{0.0005, 0.01, 0.1} {
 			for _, x := range [][]float64{x, make([]float64, n+1)} {
 				got, err := Standard().Apply(raw(x, stepS))
-				if err != nil || len(got.Acceleration) < len(x) || math.IsNaN(greatest(got.Acceleration)) {
+				if err != nil || len(got.Acceleration) < len(x) || math.IsNaN(signal.Greatest(got.Acceleration)) {
 					t.Fatalf("%d samples of %g s: %d, %v", len(x), stepS, len(got.Acceleration), err)
 				}
 			}

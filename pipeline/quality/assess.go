@@ -48,13 +48,10 @@ const (
 // arrives at the sample onset, 0 where it begins within it. The findings are in the
 // order of the flags above.
 func Assess(acceleration []float64, stepS float64, onset int) []Finding {
-	a := &assessment{x: acceleration, stepS: stepS, onset: onset}
 	if len(acceleration) == 0 {
 		return nil
 	}
-	for _, v := range acceleration {
-		a.peak = max(a.peak, math.Abs(v))
-	}
+	a := &assessment{x: acceleration, stepS: stepS, onset: onset, peak: signal.Greatest(acceleration)}
 	a.levels()
 	a.rest()
 	a.extent()
@@ -89,12 +86,17 @@ func levelOf(x []float64, stepS float64) level {
 	if len(means) < 2 {
 		return level{math.NaN(), math.NaN()}
 	}
-	m, sum := signal.Mean(means), 0.0
-	for _, v := range means {
-		sum += float64((v - m) * (v - m))
+	m, k := signal.Mean(means), float64(len(means))
+	return level{m, math.Sqrt(squaresAbout(means, m) / (k - 1) / k)}
+}
+
+// squaresAbout is the sum of the squares of x about its mean.
+func squaresAbout(x []float64, mean float64) float64 {
+	sum := 0.0
+	for _, v := range x {
+		sum += float64((v - mean) * (v - mean))
 	}
-	k := float64(len(means))
-	return level{m, math.Sqrt(sum / (k - 1) / k)}
+	return sum
 }
 
 // levels compares the mean with 0, and that of the last tenth with that before the
@@ -125,11 +127,7 @@ func (a *assessment) rest() {
 	}
 	signal.Integrate(v, v, a.stepS)
 	last := v[len(v)-max(1, len(v)/10):]
-	top := 0.0
-	for _, u := range v {
-		top = max(top, math.Abs(u))
-	}
-	if share := math.Abs(signal.Mean(last)) / top; share > restShare {
+	if share := math.Abs(signal.Mean(last)) / signal.Greatest(v); share > restShare {
 		a.add(FlagDrift, share, restShare, "the displacement drifts at the end by %.2g of PGV", share)
 	}
 }
@@ -145,10 +143,7 @@ func (a *assessment) extent() {
 	if len(rms) < 3 {
 		return
 	}
-	top := 0.0
-	for _, v := range rms {
-		top = max(top, v)
-	}
+	top := signal.Greatest(rms)
 	if s := rms[0] / top; s > startShare {
 		a.add(FlagLateStart, s, startShare, "the first second has %.2g of the strongest second's root mean square", s)
 	}
@@ -160,11 +155,7 @@ func (a *assessment) extent() {
 	}
 	if quietS >= preEventS {
 		quiet := a.x[:a.onset]
-		m, sum := signal.Mean(quiet), 0.0
-		for _, v := range quiet {
-			sum += float64((v - m) * (v - m))
-		}
-		if s := a.peak / math.Sqrt(sum/float64(len(quiet))); s < leastSignal {
+		if s := a.peak / math.Sqrt(squaresAbout(quiet, signal.Mean(quiet))/float64(len(quiet))); s < leastSignal {
 			a.add(FlagLowSignal, s, leastSignal, "PGA is %.2g times the noise before the arrival", s)
 		}
 	}
@@ -176,11 +167,7 @@ func (a *assessment) windows() []float64 {
 	mean := signal.Mean(a.x)
 	var out []float64
 	for x := a.x; len(x) >= n; x = x[n:] {
-		sum := 0.0
-		for _, v := range x[:n] {
-			sum += float64((v - mean) * (v - mean))
-		}
-		out = append(out, math.Sqrt(sum/float64(n)))
+		out = append(out, math.Sqrt(squaresAbout(x[:n], mean)/float64(n)))
 	}
 	return out
 }

@@ -1,5 +1,7 @@
 package signal
 
+import "math"
+
 // Mean returns the mean of x, which is not empty, summed from its first sample: the
 // offset is taken off before the rest is summed, so that counts on a large offset keep
 // their digits.
@@ -9,6 +11,15 @@ func Mean(x []float64) float64 {
 		sum += v - first
 	}
 	return first + sum/float64(len(x))
+}
+
+// Greatest returns the greatest |x|, 0 of none.
+func Greatest(x []float64) float64 {
+	top := 0.0
+	for _, v := range x {
+		top = max(top, math.Abs(v))
+	}
+	return top
 }
 
 // Subtract takes offset from every sample of x.
