@@ -22,10 +22,7 @@ func formatsCommand() *cli.Command {
 			"the last resort. A layout describes a format of one's own; README.md says how.",
 		Flags: []cli.Flag{layoutFlag(), formatFlag("table or json")},
 		Action: func(c *cli.Context) error {
-			var form query.Format
-			err := errors.Join(noArguments(c), parseInto(&form, c, "format", func(s string) (query.Format, error) {
-				return query.ParseFormat(s, query.FormatTable, query.FormatJSON)
-			}))
+			form, err := listFormat(c)
 			if err != nil {
 				return err
 			}
@@ -58,6 +55,21 @@ func readLayouts(names []string) (layouts ingest.Layouts, err error) {
 	return layouts, nil
 }
 
+// listFormat reads the flag --format of a list that takes no arguments.
+func listFormat(c *cli.Context) (form query.Format, err error) {
+	err = errors.Join(noArguments(c), parseInto(&form, c, "format", func(s string) (query.Format, error) {
+		return query.ParseFormat(s, query.FormatTable, query.FormatJSON)
+	}))
+	return form, err
+}
+
+// writeList writes the rows of a list as JSON under their name.
+func writeList[T any](w io.Writer, name string, rows []T) error {
+	e := json.NewEncoder(w)
+	e.SetIndent("", "  ")
+	return e.Encode(map[string]any{name: rows})
+}
+
 // formatRow is one format in JSON.
 type formatRow struct {
 	Name     string `json:"name"`
@@ -73,9 +85,7 @@ func runFormats(w io.Writer, form query.Format, layouts ingest.Layouts) error {
 		rows = append(rows, formatRow(f))
 	}
 	if form == query.FormatJSON {
-		e := json.NewEncoder(w)
-		e.SetIndent("", "  ")
-		return e.Encode(map[string]any{"formats": rows})
+		return writeList(w, "formats", rows)
 	}
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	fmt.Fprintln(t, "name\twhat it is\tchannels\tunit\tnot read")

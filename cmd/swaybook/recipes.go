@@ -3,7 +3,6 @@ package main
 import (
 	"cmp"
 	"context"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
@@ -28,10 +27,7 @@ func recipesCommand() *cli.Command {
 			formatFlag("table or json"),
 		},
 		Action: func(c *cli.Context) error {
-			var form query.Format
-			err := errors.Join(noArguments(c), parseInto(&form, c, "format", func(s string) (query.Format, error) {
-				return query.ParseFormat(s, query.FormatTable, query.FormatJSON)
-			}))
+			form, err := listFormat(c)
 			if err != nil {
 				return err
 			}
@@ -132,9 +128,7 @@ func newRecipeRow(r condition.Recipe, hash string) recipeRow {
 
 func writeRecipes(w io.Writer, form query.Format, rows []recipeRow) error {
 	if form == query.FormatJSON {
-		e := json.NewEncoder(w)
-		e.SetIndent("", "  ")
-		return e.Encode(map[string]any{"recipes": rows})
+		return writeList(w, "recipes", rows)
 	}
 	p := &printer{w: w}
 	for i, r := range rows {
