@@ -43,12 +43,16 @@ const (
 )
 
 // Who can state something, the strongest first: of several values the first is
-// taken, and among those stated by one, that of the source first by name.
+// taken, and among those stated by one, that of the source first by name. The rows of
+// a catalogue that name a file, which is their source, come before those that name an
+// event or a station, of which CodeRows is.
 const (
 	ByCatalogue = "catalogue"
 	ByMetadata  = "metadata" // StationXML and QuakeML
 	ByComputed  = "computed" // from other statements
 	ByHeader    = "header"
+
+	CodeRows = "catalogue"
 )
 
 // statedBy lists them in that order, between the two kinds of codes.
@@ -60,12 +64,13 @@ type Statement struct {
 	Attribute string
 	By        string
 	Value     string
-	Source    string // the file, "" where not kept
+	Source    string // the file, CodeRows, "" where not kept
 }
 
-// State keeps a statement and reports whether it is new. One by the catalogue, by
-// metadata or computed replaces what the same said before; headers of several
-// files may differ, and all that they say is kept.
+// State keeps a statement and reports whether it is new. One by the catalogue's rows
+// for codes, by metadata or computed replaces what the same said before; headers of
+// several files and rows of the catalogue for them may differ, and all that they say is
+// kept.
 func (t *Tx) State(ctx context.Context, s Statement) (isNew bool, err error) {
 	r, err := t.tx.ExecContext(ctx, `INSERT INTO statement (subject, subject_id, attribute, stated_by, value, source) VALUES (?, ?, ?, ?, ?, ?)
 		ON CONFLICT DO UPDATE SET source = excluded.source WHERE excluded.source < source`, s.Kind, s.ID, s.Attribute, s.By, s.Value, s.Source)
@@ -73,15 +78,71 @@ func (t *Tx) State(ctx context.Context, s Statement) (isNew bool, err error) {
 		return false, fmt.Errorf("store statement: %w", err)
 	}
 	n, err := r.RowsAffected()
-	if err != nil || n == 0 || s.By == ByHeader {
+	if err != nil || n == 0 || s.isOfOneFile() {
 		return n > 0, err
 	}
-	err = t.exec(ctx, `DELETE FROM statement WHERE subject = ? AND subject_id = ? AND attribute = ? AND stated_by = ? AND value <> ?`,
+	err = t.exec(ctx, `DELETE FROM statement WHERE subject = ? AND subject_id = ? AND attribute = ? AND stated_by = ? AND value <> ?
+		AND (stated_by <> '`+ByCatalogue+`' OR source = '`+CodeRows+`')`,
 		s.Kind, s.ID, s.Attribute, s.By, s.Value)
 	if err != nil {
 		return false, fmt.Errorf("store statement: %w", err)
 	}
 	return true, nil
+}
+
+// isOfOneFile reports whether another file may say something else.
+func (s *Statement) isOfOneFile() bool {
+	return s.By == ByHeader || s.By == ByCatalogue && s.Source != CodeRows
+}
+
+// Supersede forgets what the catalogue said before of the subjects of which it speaks
+// now: of each attribute that it states, every other value that a row for the file or one
+// for codes gave. It returns what it forgot.
+func (t *Tx) Supersede(ctx context.Context, file string, now []Statement) ([]Statement, error) {
+	var superseded []Statement
+	for _, of := range subjectsOf(now) {
+		held, err := t.Statements(ctx, of)
+		if err != nil {
+			return nil, err
+		}
+		for _, h := range held {
+			if h.By != ByCatalogue || h.Source != file && h.Source != CodeRows || !isSuperseded(&h, now) {
+				continue
+			}
+			if err := t.exec(ctx, `DELETE FROM statement WHERE subject = ? AND subject_id = ? AND attribute = ? AND stated_by = ? AND value = ?`,
+				h.Kind, h.ID, h.Attribute, h.By, h.Value); err != nil {
+				return nil, fmt.Errorf("forget statement: %w", err)
+			}
+			superseded = append(superseded, h)
+		}
+	}
+	return superseded, nil
+}
+
+// isSuperseded reports whether other values of the attribute are stated now, and this one
+// is not.
+func isSuperseded(held *Statement, now []Statement) bool {
+	stated := false
+	for _, s := range now {
+		if s.Subject == held.Subject && s.Attribute == held.Attribute {
+			if s.Value == held.Value {
+				return false
+			}
+			stated = true
+		}
+	}
+	return stated
+}
+
+// subjectsOf returns the subjects of statements, each once.
+func subjectsOf(statements []Statement) []Subject {
+	var out []Subject
+	for _, s := range statements {
+		if !slices.Contains(out, s.Subject) {
+			out = append(out, s.Subject)
+		}
+	}
+	return out
 }
 
 // CopyStatements gives a subject what headers and metadata state of another of its
@@ -124,8 +185,16 @@ func (t *Tx) Statements(ctx context.Context, of Subject) ([]Statement, error) {
 func SortStatements(s []Statement) {
 	slices.SortFunc(s, func(a, b Statement) int {
 		return cmp.Or(strings.Compare(a.Attribute, b.Attribute), cmp.Compare(slices.Index(statedBy, a.By), slices.Index(statedBy, b.By)),
-			strings.Compare(a.Source, b.Source), strings.Compare(a.Value, b.Value))
+			cmp.Compare(a.codeRows(), b.codeRows()), strings.Compare(a.Source, b.Source), strings.Compare(a.Value, b.Value))
 	})
+}
+
+// codeRows is 1 for what rows of the catalogue for codes say, 0 for all else.
+func (s *Statement) codeRows() int {
+	if s.By == ByCatalogue && s.Source == CodeRows {
+		return 1
+	}
+	return 0
 }
 
 func statementFields(s *Statement) []any {

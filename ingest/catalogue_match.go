@@ -149,7 +149,7 @@ func rowName(row *catalogueRow) string { return fmt.Sprintf("catalogue line %d",
 // stated holds nothing but what the rows say, under the codes of the channel,
 // so that it can replace what another file's header said of the same event or
 // station.
-func (c *Catalogue) Apply(rel string, ch *Channel) (stated Channel, matched bool) {
+func (c *Catalogue) Apply(rel string, ch *Channel) (stated Stated, matched bool) {
 	files := c.fileRows(rel)
 	giveDirection(files, ch)
 	files = slices.DeleteFunc(files, func(row *catalogueRow) bool { return !row.fits(ch.Orientation) })
@@ -161,11 +161,41 @@ func (c *Catalogue) Apply(rel string, ch *Channel) (stated Channel, matched bool
 	for _, row := range rows {
 		row.used.Store(true)
 		row.apply(ch)
-		row.apply(&stated)
+		row.state(&stated)
 	}
 	stated.Event.ID = EventCode(ch)
 	stated.Station.Network, stated.Station.Code = ch.Station.Network, StationCode(ch)
 	return stated, len(rows) > 0
+}
+
+// Stated is what the rows of a catalogue say of a channel, its event and its station.
+type Stated struct {
+	Channel // all of it
+
+	// ByCode is what rows say that name the event or the station they speak of, and
+	// ByFile what those say that name the file alone. The former say one thing, since
+	// contradictions are refused; of the latter nobody knows of which event and station
+	// they speak until the files are read.
+	ByCode, ByFile Channel
+}
+
+// state adds what the row states.
+func (row *catalogueRow) state(to *Stated) {
+	row.apply(&to.Channel)
+	if row.file == "" {
+		row.apply(&to.ByCode)
+		return
+	}
+	event, station := to.ByFile.Event, to.ByFile.Station
+	row.apply(&to.ByFile)
+	if row.event != "" {
+		to.ByFile.Event = event
+		applyEvent(&to.ByCode.Event, &row.channel.Event)
+	}
+	if row.station != "" {
+		to.ByFile.Station = station
+		applyStation(&to.ByCode.Station, &row.channel.Station)
+	}
 }
 
 // GiveDirection gives the channel of the file at a slash-separated relative path the

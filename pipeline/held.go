@@ -38,7 +38,7 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 				}
 				stated.Event.ID = ingest.EventCode(&c)
 			}
-			if err := w.redescribe(ctx, tx, held, c.Orientation, stated); err != nil {
+			if err := w.redescribe(ctx, tx, held, c.Orientation, stated, res.source.Path); err != nil {
 				return err
 			}
 		}
@@ -61,26 +61,75 @@ func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.Held
 	return w.settler.state(ctx, key, accounts)
 }
 
-// redescribe stores what the catalogue states of a held component.
-func (w *writer) redescribe(ctx context.Context, tx *db.Tx, held db.HeldComponent, o ingest.Orientation, stated ingest.Channel) error {
-	record, err := tx.PutRecord(ctx, recordOf(stated, held.Record.Code), true)
+// redescribe stores what the catalogue states of a held component of a file.
+func (w *writer) redescribe(ctx context.Context, tx *db.Tx, held db.HeldComponent, o ingest.Orientation, stated ingest.Stated, path string) error {
+	record, err := tx.PutRecord(ctx, recordOf(stated.Channel, held.Record.Code), true)
 	if err != nil {
 		return err
 	}
 	if err := w.settler.move(ctx, held.Record, record); err != nil {
 		return err
 	}
-	if err := w.settler.state(ctx, record, []account{catalogueAccount(stated)}); err != nil {
+	if err := w.settler.restate(ctx, record, catalogueAccounts(stated, path), path); err != nil {
 		return err
 	}
 	stated.Orientation = o
-	if err := tx.DescribeComponent(ctx, held.ID, componentOf(solved{channel: stated}, held.Role)); err != nil {
+	if err := tx.DescribeComponent(ctx, held.ID, componentOf(solved{channel: stated.Channel}, held.Role)); err != nil {
 		return err
 	}
 	if o == orientationOf(held.Component) {
 		return nil
 	}
 	return renewRoles(ctx, tx, held.Record.Code)
+}
+
+// move takes what headers and metadata said of a held record's event and station
+// along to those that the catalogue gives it instead.
+func (s *settler) move(ctx context.Context, held *db.Record, to db.RecordKey) error {
+	for _, m := range []struct {
+		kind     string
+		from, to int64
+	}{{db.SubjectEvent, held.EventID, to.EventID}, {db.SubjectStation, held.StationID, to.StationID}} {
+		if m.from == m.to || m.from == 0 || m.to == 0 {
+			continue
+		}
+		subject := db.Subject{Kind: m.kind, ID: m.to}
+		if m.kind == db.SubjectEvent {
+			if err := s.tx.CopyQuakes(ctx, m.from, m.to); err != nil {
+				return err
+			}
+			s.seen[m.to] = true
+			delete(s.held, m.to)
+		}
+		if err := s.tx.CopyStatements(ctx, db.Subject{Kind: m.kind, ID: m.from}, subject); err != nil {
+			return err
+		}
+		s.touched[subject] = true
+		s.touched[db.Subject{Kind: m.kind, ID: m.from}] = true
+	}
+	return nil
+}
+
+// restate keeps what the accounts of a catalogue say of a record of a file that is
+// held, in place of what a catalogue said of that file before.
+func (s *settler) restate(ctx context.Context, k db.RecordKey, accounts []account, file string) error {
+	if err := s.state(ctx, k, accounts); err != nil {
+		return err
+	}
+	var now []db.Statement
+	for _, a := range accounts {
+		now = append(now, a.statements(k)...)
+	}
+	superseded, err := s.tx.Supersede(ctx, file, now)
+	for _, st := range superseded {
+		s.touched[st.Subject] = true
+		st.Source = ""
+		delete(s.known, st)
+		if st.Kind == db.SubjectEvent {
+			delete(s.held, st.ID)
+		}
+	}
+	return err
 }
 
 // renewRoles gives the components of a record the roles of their directions.

@@ -43,7 +43,7 @@ type result struct {
 // solved is one channel with what was computed of it.
 type solved struct {
 	channel  ingest.Channel         // without samples
-	stated   ingest.Channel         // what the catalogue says of it, and nothing else
+	stated   ingest.Stated          // what the catalogue says of it, and nothing else
 	matched  bool                   // whether the catalogue says anything
 	accounts []account              // what everybody says of its event, station and record
 	quake    *ingest.CatalogueEvent // the QuakeML event that gave it its event, nil for none
@@ -155,7 +155,7 @@ func (r *reader) tell(file ingest.Found, format, stem string, c *ingest.Channel)
 	}
 	s.accounts, s.doubt = append(s.accounts, accounts...), doubt
 	if s.matched {
-		s.accounts = append(s.accounts, catalogueAccount(s.stated))
+		s.accounts = append(s.accounts, catalogueAccounts(s.stated, file.Path)...)
 	}
 	return s
 }
@@ -175,7 +175,7 @@ func schemeOf(format, network string) string {
 
 // describe completes what the file's content says by the catalogue, which has the
 // last word, and by the file's name where neither gives a direction.
-func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (stated ingest.Channel, matched bool) {
+func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (stated ingest.Stated, matched bool) {
 	if r.catalogue != nil {
 		r.catalogue.GiveDirection(file.Rel, c)
 	}
@@ -220,9 +220,12 @@ func numberOrNaN(n ingest.Number) float64 {
 	return n.Value
 }
 
-// catalogueAccount is what the catalogue says of a channel.
-func catalogueAccount(stated ingest.Channel) account {
-	return account{by: db.ByCatalogue, source: "catalogue", channel: stated}
+// catalogueAccounts are what the catalogue says of a channel of a file.
+func catalogueAccounts(stated ingest.Stated, path string) []account {
+	return []account{
+		{by: db.ByCatalogue, source: db.CodeRows, channel: stated.ByCode},
+		{by: db.ByCatalogue, source: path, channel: stated.ByFile},
+	}
 }
 
 func withoutSamples(c ingest.Channel) ingest.Channel {

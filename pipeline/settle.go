@@ -179,33 +179,6 @@ func (e *statedEvent) complete(q *db.Event) {
 	}
 }
 
-// move takes what headers and metadata said of a held record's event and station
-// along to those that the catalogue gives it instead.
-func (s *settler) move(ctx context.Context, held *db.Record, to db.RecordKey) error {
-	for _, m := range []struct {
-		kind     string
-		from, to int64
-	}{{db.SubjectEvent, held.EventID, to.EventID}, {db.SubjectStation, held.StationID, to.StationID}} {
-		if m.from == m.to || m.from == 0 || m.to == 0 {
-			continue
-		}
-		subject := db.Subject{Kind: m.kind, ID: m.to}
-		if m.kind == db.SubjectEvent {
-			if err := s.tx.CopyQuakes(ctx, m.from, m.to); err != nil {
-				return err
-			}
-			s.seen[m.to] = true
-			delete(s.held, m.to)
-		}
-		if err := s.tx.CopyStatements(ctx, db.Subject{Kind: m.kind, ID: m.from}, subject); err != nil {
-			return err
-		}
-		s.touched[subject] = true
-		s.touched[db.Subject{Kind: m.kind, ID: m.from}] = true
-	}
-	return nil
-}
-
 // settle brings events, then stations, then records up to date.
 func (s *settler) settle(ctx context.Context) error {
 	for _, id := range slices.Sorted(maps.Keys(s.seen)) {

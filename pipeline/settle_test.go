@@ -329,7 +329,7 @@ func TestEqualTimesAcrossBatches(t *testing.T) {
 		return ingest.Event{Origin: quakeTime, Latitude: ingest.Known(lat), Longitude: ingest.Known(14)}
 	}
 	alone := header("R1", "a", ingest.Event{Origin: quakeTime}, ingest.Station{})
-	described := inventedAccount{"R1", catalogueAccount(ingest.Channel{Event: at(41)})}
+	described := inventedAccount{"R1", account{by: db.ByCatalogue, source: db.CodeRows, channel: ingest.Channel{Event: at(41)}}}
 	accounts := []inventedAccount{alone, header("R2", "b", ingest.Event{Origin: quakeTime}, ingest.Station{}), described,
 		header("R3", "c", at(-20), ingest.Station{}), header("R4", "d", at(41.1), ingest.Station{})}
 	for _, batch := range []int{1, len(accounts)} {

@@ -71,7 +71,11 @@ func positionValue(latitude, longitude ingest.Number) string {
 	return numberValue(latitude) + " " + numberValue(longitude)
 }
 
+// magnitudeValue is "" for a type alone, which is no statement of the magnitude.
 func magnitudeValue(magnitude ingest.Number, kind string) string {
+	if !magnitude.Known {
+		return ""
+	}
 	return strings.TrimSpace(numberValue(magnitude) + " " + kind)
 }
 

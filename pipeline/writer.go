@@ -172,7 +172,7 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, path string, s solved, p placement, sourceID int64) error {
 	record, err := tx.PutRecord(ctx, recordOf(s.channel, p.code), false)
 	if err == nil && s.matched {
-		record, err = tx.PutRecord(ctx, recordOf(s.stated, p.code), true)
+		record, err = tx.PutRecord(ctx, recordOf(s.stated.Channel, p.code), true)
 	}
 	if err != nil {
 		return err
