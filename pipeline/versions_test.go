@@ -49,6 +49,7 @@ func TestVersionsOfOneMotion(t *testing.T) {
 		{"with a drift", driftingCSV(1, 1, 3, 5), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 invented-20260312_site-00"},
 		{"another motion with a drift", driftingCSV(2, 1, 3, 5), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 -"},
 		{"another motion", csvOf(2, 1, 2), "zcopy.csv,invented-20260312,site-00,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h1 -"},
+		{"small letters", csvOf(1, 1, 2), "zcopy.csv,invented-20260312,SITE-00,000\n", "invented-20260312_SITE-00 h1 invented-20260312_site-00, invented-20260312_site-00 h1 -"},
 		{"another station", csvOf(1, 1, 2), "zcopy.csv,invented-20260312,site-01,000\n", "invented-20260312_site-00 h1 -, invented-20260312_site-01 h1 -"},
 		{"another direction", csvOf(1, 1, 2), "zcopy.csv,invented-20260312,site-00,090\n", "invented-20260312_site-00 h1 -, invented-20260312_site-00_v2 h2 -"},
 	} {
