@@ -113,14 +113,13 @@ func (c *Comparer) compare(a, b *Motion, l *limits) Verdict {
 		return Verdict{Reason: reason}
 	}
 	c.search.load(a, b, ratio, stepS)
-	lag, found := c.search.best()
-	if !found {
+	v := c.judge(l)
+	if v.Common == 0 {
 		return Verdict{Reason: "no lag at which they share most of their energy"}
 	}
-	v := judge(c.search.at(lag), l)
-	v.Lag, v.LagStepS = lag, stepS
+	v.LagStepS = stepS
 	if exchanged {
-		v.Lag = -lag
+		v.Lag = -v.Lag
 	}
 	if v.Kind == Different {
 		return v
@@ -134,6 +133,24 @@ func (c *Comparer) compare(a, b *Motion, l *limits) Verdict {
 	if exchanged {
 		v.Scale, v.Offset = 1/v.Scale, -v.Offset/v.Scale
 	}
+	return v
+}
+
+// judge makes a verdict of the two series at hand, without LagStepS: of the fragment that
+// one is of the other, where it is exactly that, or else of the whole.
+func (c *Comparer) judge(l *limits) Verdict {
+	whole, fragment := c.search.best()
+	if fragment.found && fragment.r2 > float64(l.exact*l.exact) {
+		if v := judge(c.search.at(fragment.lag), l); v.Kind >= Scaled {
+			v.Lag = fragment.lag
+			return v
+		}
+	}
+	if !whole.found {
+		return Verdict{}
+	}
+	v := judge(c.search.at(whole.lag), l)
+	v.Lag = whole.lag
 	return v
 }
 

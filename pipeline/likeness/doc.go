@@ -5,8 +5,10 @@
 // What is compared is the Pearson correlation ρ over the samples that two series
 // share at a lag, at the lag where |ρ| is greatest. It knows neither factor nor
 // offset. The shared part must be most of both: four fifths of the samples of the
-// shorter one, and of the energy of each. A fragment without the strong motion is
-// therefore another motion. It must cross its mean 16 times, since fewer swings
+// shorter one, and of the energy of each. A fragment that begins or ends within the
+// strong motion is therefore the same only where its samples are, but for factor and
+// offset (Scaled); then most of its own energy is enough, a tenth of the other's,
+// and one of its greatest swings among those of the other. The part must cross its mean 16 times, since fewer swings
 // may look alike by chance.
 //
 //	Identical  |ρ| ≥ 0.99995 and a factor of 1 within 0.2 %

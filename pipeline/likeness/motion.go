@@ -9,6 +9,7 @@ import (
 
 const (
 	shared    = 0.8   // part in common, of the samples of the shorter and of the energy of each
+	fragment  = 0.1   // least part of the energy of one, where the other is Scaled of that part
 	sameScale = 0.002 // from 1, of factors that a rounded g explains
 	crossings = 16    // fewest of zero in common
 )

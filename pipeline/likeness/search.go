@@ -53,25 +53,45 @@ func (s *search) least() int {
 	return max(2, int(math.Ceil(shared*float64(shorter))))
 }
 
-// best returns the lag at which the size of the correlation is greatest, among those
-// at which x and y share enough.
-func (s *search) best() (lag int, found bool) {
+// peak is the lag at which the size of a correlation is greatest.
+type peak struct {
+	lag   int
+	r2    float64
+	found bool
+}
+
+func (p *peak) take(lag int, r2 float64) {
+	if !p.found || r2 > p.r2 {
+		*p = peak{lag, r2, true}
+	}
+}
+
+// best returns the lag at which the size of the correlation is greatest among those at
+// which x and y share most of the energy of both, and among those at which they share most
+// of the energy of one, and of the other what counts as a fragment.
+func (s *search) best() (whole, fragment peak) {
 	least := s.least()
 	if len(s.x) < least || len(s.y) < s.ratio*(least-1)+1 {
-		return 0, false
+		return whole, fragment
 	}
 	products := s.products(least)
-	greatest := -1.0
 	for k := -s.ratio * (len(s.x) - least); k <= len(s.y)-1-s.ratio*(least-1); k++ {
 		i := k
 		if i < 0 {
 			i += len(products)
 		}
-		if r2 := s.squared(k, products[i]); r2 > greatest {
-			lag, greatest = k, r2
+		first, last := s.window(k)
+		if last-first+1 < least { // where y has one sample fewer in step with x
+			continue
+		}
+		switch r2, common := s.squared(k, first, last, products[i]); common {
+		case ofBoth:
+			whole.take(k, r2)
+		case ofOne:
+			fragment.take(k, r2)
 		}
 	}
-	return lag, greatest >= 0
+	return whole, fragment
 }
 
 // products returns Σ x[j]·y[lag + ratio·j] for all lags at which at least that many
@@ -116,10 +136,18 @@ func (s *search) window(lag int) (first, last int) {
 	return first, min(last, (len(s.y)-1-lag)/s.ratio)
 }
 
-// squared returns ρ² at a lag from the sum of products there, and −1 where x and y
-// share too little of their energy.
-func (s *search) squared(lag int, product float64) float64 {
-	first, last := s.window(lag)
+// common is of what x and y share most of the energy.
+type common int
+
+const (
+	ofNone common = iota
+	ofOne
+	ofBoth
+)
+
+// squared returns ρ² at a lag from its window and the sum of products there, where x and y
+// share most of the energy of both, or of one and a fragment of the other.
+func (s *search) squared(lag, first, last int, product float64) (r2 float64, of common) {
 	n := float64(last - first + 1)
 	x, xx := s.sumX[last], s.sqrX[last]
 	if first > 0 {
@@ -132,11 +160,19 @@ func (s *search) squared(lag int, product float64) float64 {
 	}
 	end := len(s.y) - 1 - (len(s.y)-1-to)%s.ratio // of the samples of y in step with x
 	xx, yy = xx-float64(x*x)/n, yy-float64(y*y)/n
-	if !(xx > 0 && yy > 0 && xx >= shared*s.sqrX[len(s.x)-1] && yy >= shared*s.sqrY[end]) {
-		return -1
+	allX, allY := s.sqrX[len(s.x)-1], s.sqrY[end]
+	switch {
+	case !(xx > 0 && yy > 0):
+		return 0, ofNone
+	case xx >= shared*allX && yy >= shared*allY:
+		of = ofBoth
+	case xx >= shared*allX && yy >= fragment*allY || yy >= shared*allY && xx >= fragment*allX:
+		of = ofOne
+	default:
+		return 0, ofNone
 	}
 	xy := product - float64(x*y)/n
-	return xy * xy / float64(xx*yy)
+	return xy * xy / float64(xx*yy), of
 }
 
 // pair is what x and y have in common at a lag.

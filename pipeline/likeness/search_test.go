@@ -7,8 +7,9 @@ import (
 )
 
 // bruteForce correlates x[j] with y[lag + ratio·j] at every lag by definition and
-// returns the lag of the greatest |ρ|, under the rules of the package comment.
-func bruteForce(x, y []float64, ratio int) (lag int, correlation float64, found bool) {
+// returns where ρ² is greatest under the rules of the package comment, for wholes and for
+// fragments.
+func bruteForce(x, y []float64, ratio int) (whole, part peak) {
 	shorter := min(len(x), (len(y)-1)/ratio+1)
 	for k := -ratio * len(x); k <= len(y); k++ {
 		var px, py, phase []float64
@@ -26,14 +27,15 @@ func bruteForce(x, y []float64, ratio int) (lag int, correlation float64, found 
 			continue
 		}
 		xx, yy, xy := moments(px, py)
-		if xx <= 0 || yy <= 0 || xx < 0.8*squares(x) || yy < 0.8*squares(phase) {
-			continue
-		}
-		if rho := xy / math.Sqrt(xx*yy); !found || math.Abs(rho) > math.Abs(correlation) {
-			lag, correlation, found = k, rho, true
+		shareX, shareY := xx/squares(x), yy/squares(phase)
+		switch most, least := max(shareX, shareY), min(shareX, shareY); {
+		case least >= 0.8:
+			whole.take(k, xy*xy/(xx*yy))
+		case most >= 0.8 && least >= 0.1:
+			part.take(k, xy*xy/(xx*yy))
 		}
 	}
-	return lag, correlation, found
+	return whole, part
 }
 
 func moments(x, y []float64) (xx, yy, xy float64) {
@@ -69,11 +71,11 @@ func TestSearchIsItsDefinition(t *testing.T) {
 		}
 		return x
 	}
-	found := 0
+	wholes, fragments := 0, 0
 	var s search
 	for range 400 {
 		ratio := 1 + rng.IntN(4)
-		x, y := noise(2+rng.IntN(40)), noise(2+rng.IntN(120))
+		x, y := noise(8+rng.IntN(40)), noise(8+rng.IntN(120))
 		if rng.IntN(2) == 0 { // a copy within, at a lag
 			for j := range x {
 				if i := ratio*j + rng.IntN(ratio); i < len(y) {
@@ -83,17 +85,25 @@ func TestSearchIsItsDefinition(t *testing.T) {
 		}
 		a, b := motion(t, x, float64(ratio)), motion(t, y, 1)
 		s.load(a, b, ratio, 1)
-		lag, ok := s.best()
-		wantLag, want, wantOK := bruteForce(a.centred(nil), b.centred(nil), ratio)
-		if ok != wantOK || ok && (lag != wantLag || !near(s.at(lag).correlation, want, 1e-9)) {
-			t.Errorf("%d and %d samples, ratio %d: lag %d, %v, want %d, %v, with %v", len(x), len(y), ratio, lag, ok, wantLag, wantOK, want)
+		whole, part := s.best()
+		wantWhole, wantPart := bruteForce(a.centred(nil), b.centred(nil), ratio)
+		for _, c := range []struct{ got, want peak }{{whole, wantWhole}, {part, wantPart}} {
+			if c.got.found != c.want.found || c.got.lag != c.want.lag || !near(c.got.r2, c.want.r2, 1e-9) {
+				t.Errorf("%d and %d samples, ratio %d: %+v, want %+v", len(x), len(y), ratio, c.got, c.want)
+			}
 		}
-		if ok {
-			found++
+		if whole.found {
+			wholes++
+			if rho := s.at(whole.lag).correlation; !near(rho*rho, whole.r2, 1e-9) {
+				t.Errorf("%d and %d samples, ratio %d: ρ %v where ρ² is %v", len(x), len(y), ratio, rho, whole.r2)
+			}
+		}
+		if part.found {
+			fragments++
 		}
 	}
-	if found < 100 {
-		t.Errorf("only %d of 400 pairs had a lag", found)
+	if wholes < 100 || fragments < 100 {
+		t.Errorf("only %d of 400 pairs share most of both, %d of one", wholes, fragments)
 	}
 }
 

@@ -131,11 +131,11 @@ func correlated(c *Comparer, a, b *Motion) float64 {
 	}
 	ratio, stepS, _ := steps(a, b)
 	c.search.load(a, b, ratio, stepS)
-	lag, found := c.search.best()
-	if !found {
+	whole, _ := c.search.best()
+	if !whole.found {
 		return 0
 	}
-	return math.Abs(c.search.at(lag).correlation)
+	return math.Abs(c.search.at(whole.lag).correlation)
 }
 
 func (s *spread) log(t *testing.T, name string) {
