@@ -48,6 +48,8 @@ func newReducer(motions []motion, percents []float64) *reducer {
 const leastForPercentiles = 3
 
 // reduce takes one value a motion, in the order of motions, NaN for those that have none.
+// Sums are of the sorted values, so that they are the same in every digit whatever the
+// order in which the files were read.
 func (r *reducer) reduce(values []float64) Reduction {
 	known := r.known[:0]
 	for _, x := range values {
@@ -63,11 +65,11 @@ func (r *reducer) reduce(values []float64) Reduction {
 	sorted, scratch := r.sorted[:n], r.scratch[:n]
 	copy(sorted, known)
 	stats.Sort(sorted, scratch)
-	out := Reduction{Count: n, Mean: stats.Mean(known), Percentiles: stats.Percentiles(nil, sorted, r.percents), Min: sorted[0], Max: sorted[n-1]}
+	out := Reduction{Count: n, Mean: stats.Mean(sorted), Percentiles: stats.Percentiles(nil, sorted, r.percents), Min: sorted[0], Max: sorted[n-1]}
 	if n < leastForPercentiles {
 		out.Percentiles = slices.Repeat([]float64{nan}, len(r.percents))
 	}
-	out.LogMean, out.LogStd = stats.LogMoments(scratch, known)
+	out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
 	if governing := slices.Index(values, out.Max); governing >= 0 {
 		m := &r.motions[governing]
 		out.Governing, out.GoverningComponent = m.record(), m.role
