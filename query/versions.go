@@ -47,24 +47,48 @@ func readVersions(ctx context.Context, snapshot *db.Snapshot) (versions, error) 
 
 // byPreference orders records, the one first of which statistics take a motion: one
 // with both horizontals before one without, corrected before raw, then the wider
-// usable band, the longer motion, the finer step, and the earlier path.
+// usable band, the longer motion, the finer step, and the earlier path, each of the least
+// favourable component.
 func byPreference(records map[int64][]*db.Version) []int64 {
 	var ids []int64
 	for id := range records {
 		ids = append(ids, id)
 	}
+	worths := map[int64]worth{}
+	for _, id := range ids {
+		worths[id] = worthOf(records[id])
+	}
 	slices.SortFunc(ids, func(i, j int64) int {
-		a, b := records[i], records[j]
+		a, b := worths[i], worths[j]
 		return cmp.Or(
-			cmp.Compare(horizontals(b), horizontals(a)),
-			cmp.Compare(processingRank(a[0].Processing), processingRank(b[0].Processing)),
-			cmp.Compare(usableBand(b[0]), usableBand(a[0])),
-			cmp.Compare(lengthS(b[0]), lengthS(a[0])),
-			cmp.Compare(a[0].StepS, b[0].StepS),
-			strings.Compare(a[0].SourcePath, b[0].SourcePath),
-			strings.Compare(a[0].RecordCode, b[0].RecordCode))
+			cmp.Compare(b.horizontals, a.horizontals),
+			cmp.Compare(a.processing, b.processing),
+			cmp.Compare(b.band, a.band),
+			cmp.Compare(b.lengthS, a.lengthS),
+			cmp.Compare(a.stepS, b.stepS),
+			strings.Compare(a.path, b.path),
+			strings.Compare(a.code, b.code))
 	})
 	return ids
+}
+
+// worth is what speaks for a record: of its components the least favourable.
+type worth struct {
+	horizontals, processing int
+	band, lengthS, stepS    float64
+	path, code              string // the first by name
+}
+
+func worthOf(components []*db.Version) worth {
+	w := worth{horizontals: horizontals(components), band: math.Inf(1), lengthS: math.Inf(1), path: components[0].SourcePath, code: components[0].RecordCode}
+	for _, v := range components {
+		w.processing = max(w.processing, processingRank(v.Processing))
+		w.band = min(w.band, usableBand(v))
+		w.lengthS = min(w.lengthS, lengthS(v))
+		w.stepS = max(w.stepS, v.StepS)
+		w.path = min(w.path, v.SourcePath)
+	}
+	return w
 }
 
 func horizontals(components []*db.Version) int {

@@ -28,12 +28,16 @@ func TestByPreference(t *testing.T) {
 		version(7, func(v *db.Version) { v.Start = time.Now() }),
 		version(8, func(v *db.Version) { v.StepS, v.Samples = 0.02, 500 }), // 9.98 s of 9.99
 		version(9, func(v *db.Version) { v.StepS, v.Samples = 0.005, 1999 }),
+		version(10, func(v *db.Version) { v.Processing, v.LowCutHz, v.HighCutHz = "corrected", ptr(0.05), ptr(20.0) }),
+		version(10, func(v *db.Version) { // as good as its worse component, whichever was read first
+			v.Role, v.Processing, v.LowCutHz, v.HighCutHz = db.RoleV, "corrected", ptr(0.3), ptr(20.0)
+		}),
 	}
 	byRecord := map[int64][]*db.Version{}
 	for i := range found {
 		byRecord[found[i].RecordID] = append(byRecord[found[i].RecordID], &found[i])
 	}
-	if got, want := fmt.Sprint(byPreference(byRecord)), "[5 4 3 6 2 9 1 7 8]"; got != want {
+	if got, want := fmt.Sprint(byPreference(byRecord)), "[5 4 3 10 6 2 9 1 7 8]"; got != want {
 		t.Errorf("got %s, want %s", got, want)
 	}
 }
