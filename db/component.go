@@ -252,6 +252,36 @@ func (t *Tx) forgetConditioned(ctx context.Context, componentID int64, lowCutHz,
 	return nil
 }
 
+// roleTables hold rows by record and role.
+var roleTables = []string{"component", "spectrum", "measure", "conditioning"}
+
+// MoveComponents gives components of one record, by their roles, to another, where they
+// have the roles that these are the keys of, with their spectra and measures. What their
+// files, by paths, state of the record is stated of both: of equal statements one file's is
+// kept. What was rotated of either record's horizontals is removed.
+func (t *Tx) MoveComponents(ctx context.Context, from, to int64, roles map[string]string, paths []string) error {
+	for _, id := range []int64{from, to} {
+		if err := t.forgetRotated(ctx, id); err != nil {
+			return err
+		}
+	}
+	for _, table := range roleTables {
+		for role, other := range roles {
+			if err := t.exec(ctx, `UPDATE `+table+` SET record_id = ?, role = ? WHERE record_id = ? AND role = ?`, to, other, from, role); err != nil {
+				return fmt.Errorf("move %s: %w", table, err)
+			}
+		}
+	}
+	for _, path := range paths {
+		err := t.exec(ctx, `INSERT INTO statement SELECT subject, ?, attribute, stated_by, value, source FROM statement
+			WHERE subject = ? AND subject_id = ? AND source = ? ON CONFLICT DO NOTHING`, to, SubjectRecord, from, path)
+		if err != nil {
+			return fmt.Errorf("copy statements: %w", err)
+		}
+	}
+	return nil
+}
+
 // SetRoles renames roles of a record's components, with their spectra and
 // measures: what has a key's role gets the value's. Roles may change places. What
 // was rotated of the record's horizontals is removed, since these are others now.
@@ -265,7 +295,7 @@ func (t *Tx) SetRoles(ctx context.Context, recordID int64, renamed map[string]st
 	// Two steps through names that nothing else has, since roles are unique in a
 	// record at every moment.
 	const between = "was "
-	for _, table := range []string{"component", "spectrum", "measure", "conditioning"} {
+	for _, table := range roleTables {
 		query := `UPDATE ` + table + ` SET role = ? WHERE record_id = ? AND role = ?`
 		for old := range renamed {
 			if err := t.exec(ctx, query, between+old, recordID, old); err != nil {

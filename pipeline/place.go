@@ -1,10 +1,12 @@
 package pipeline
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"path"
 	"path/filepath"
+	"slices"
 	"time"
 
 	"swaybook/db"
@@ -23,6 +25,16 @@ type placement struct {
 	newRecord bool
 	role      string
 	renamed   map[string]string
+	from      *departure // what comes along, nil for nothing
+}
+
+// departure is what leaves a record for the one to which a channel of its delivery goes,
+// and the new roles of what stays there.
+type departure struct {
+	recordID int64
+	moved    map[string]string // roles there and in the other record
+	paths    []string          // the files of what leaves
+	renamed  map[string]string
 }
 
 // maxVersions is how many versions of one record are held. More are a sign that
@@ -33,24 +45,23 @@ const maxVersions = 20
 // instrument make one record, unless the channel starts at another time (a
 // second trigger), its direction is taken by another sensor of the same file
 // family, or it is another version of what the record holds: another format or
-// state of processing, or a direction that is taken already. Files without
-// identity make one record only within a folder. What does not belong gets a record
-// of its own, whose code says why. A channel that states no direction, and another
-// content of a file that is held, are errors.
+// state of processing, or a direction that is taken already. Of several versions the one
+// is taken that holds channels of the same file, or else of its folder: what was delivered
+// together stays so, and follows the channel where that finds its direction taken by
+// another delivery. Files without identity make one record only within a folder. What does
+// not belong gets a record of its own, whose code says why. A channel that states no
+// direction, and another content of a file that is held, are errors.
 func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (placement, error) {
-	code, r, err := findRecord(ctx, tx, res, c)
+	code, err := findRecord(ctx, tx, res, c)
 	if err != nil {
 		return placement{}, err
 	}
-	p, rival, err := placeVersion(ctx, tx, code, r, res, c)
+	p, rival, err := placeVersion(ctx, tx, code, res, c)
 	if err != nil || rival == nil {
 		return p, err
 	}
 	code += "_ch" + ingest.Slug(c.ChannelCode)
-	if r, _, err = tx.FindRecord(ctx, code); err != nil {
-		return placement{}, err
-	}
-	if p, rival, err = placeVersion(ctx, tx, code, r, res, c); rival != nil {
+	if p, rival, err = placeVersion(ctx, tx, code, res, c); rival != nil {
 		err = takenError(code, *rival, res.source, c)
 	}
 	return p, err
@@ -59,25 +70,123 @@ func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (place
 // placeVersion finds the version of the record to which the channel belongs, the
 // record itself or one of code_v2, code_v3 …. rival is the component of another
 // sensor that has the channel's direction.
-func placeVersion(ctx context.Context, tx *db.Tx, code string, r db.StoredRecord, res result, c *ingest.Channel) (p placement, rival *db.Component, err error) {
-	base := code
-	for n := 2; ; n++ {
-		if isSameVersion(r, res, c) {
-			if p, rival = join(code, r, c); rival == nil {
-				return p, nil, nil
-			}
-			switch {
-			case isAmended(rival, res.source) || hasNoDirection(rival, c) || n > maxVersions:
-				return p, nil, takenError(code, *rival, res.source, c)
-			case c.ChannelCode != "" && rival.Channel != c.ChannelCode:
-				return p, rival, nil
-			}
+func placeVersion(ctx context.Context, tx *db.Tx, code string, res result, c *ingest.Channel) (p placement, rival *db.Component, err error) {
+	var parted *db.StoredRecord // from what came with the channel, by another that has its direction
+	best, nearest := db.StoredRecord{}, -1
+	for n := 1; nearest < nearestOf(res); n++ {
+		version := code
+		if n > 1 {
+			version = fmt.Sprintf("%s_v%d", code, n)
 		}
-		code = fmt.Sprintf("%s_v%d", base, n)
-		if r, _, err = tx.FindRecord(ctx, code); err != nil {
+		r, held, err := tx.FindRecord(ctx, version)
+		if err != nil {
 			return p, nil, err
 		}
+		if !held {
+			if nearest < 0 {
+				best = db.StoredRecord{Code: version}
+			}
+			break
+		}
+		if !isSameVersion(r, res, c) {
+			continue
+		}
+		_, rival := join(r, c)
+		if rival == nil {
+			if near := nearness(r.Components, res); near > nearest {
+				best, nearest = r, near
+			}
+			continue
+		}
+		switch {
+		case isAmended(rival, res.source) || hasNoDirection(rival, c) || n > maxVersions:
+			return p, nil, takenError(version, *rival, res.source, c)
+		case c.ChannelCode != "" && rival.Channel != c.ChannelCode:
+			return p, rival, nil
+		case nearness(r.Components, res) > nearness([]db.Component{*rival}, res):
+			parted = &r
+		}
 	}
+	p, rival = join(best, c)
+	if parted != nil && nearness(parted.Components, res) > nearest {
+		p = bringAlong(*parted, best, res, c, p)
+	}
+	return p, rival, nil
+}
+
+// How near to a file another one lies of which a record holds components.
+const (
+	elsewhere = iota
+	inOneFolder
+	inOneFile
+)
+
+// nearness is that of the nearest component.
+func nearness(components []db.Component, res result) int {
+	near := elsewhere
+	for i := range components {
+		near = max(near, nearnessOf(&components[i], res))
+	}
+	return near
+}
+
+func nearnessOf(c *db.Component, res result) int {
+	switch {
+	case c.SourcePath == res.source.Path:
+		return inOneFile
+	case archive.Folder(c.SourcePath) == archive.Folder(res.source.Path):
+		return inOneFolder
+	}
+	return elsewhere
+}
+
+// nearestOf is the nearness beyond which nothing can be for a channel of the file.
+func nearestOf(res result) int {
+	if len(res.channels) > 1 {
+		return inOneFile
+	}
+	return inOneFolder
+}
+
+// bringAlong lets what came with the channel c leave the record in which another has c's
+// direction, for the record to which c goes as p says, unless that has no place for it.
+func bringAlong(parted, to db.StoredRecord, res result, c *ingest.Channel, p placement) placement {
+	_, rival := join(parted, c)
+	least := nearnessOf(rival, res) + 1
+	var leaves, stays []db.Component
+	from := departure{recordID: parted.ID}
+	for i, held := range parted.Components {
+		if nearnessOf(&parted.Components[i], res) < least {
+			stays = append(stays, held)
+			continue
+		}
+		leaves = append(leaves, held)
+		from.paths = append(from.paths, held.SourcePath)
+	}
+	together := append(orientationsOf(to.Components), orientationsOf(leaves)...)
+	roles := ingest.AssignRoles(append(together, c.Orientation))
+	if slices.Contains(roles, "") {
+		return p
+	}
+	p.renamed = renamed(to.Components, roles)
+	from.moved = map[string]string{}
+	for i, held := range leaves {
+		from.moved[held.Role] = roles[len(to.Components)+i]
+	}
+	p.role, p.from = roles[len(roles)-1], &from
+	from.renamed = renamed(stays, ingest.AssignRoles(orientationsOf(stays)))
+	return p
+}
+
+// renamed says which components have other roles now.
+func renamed(components []db.Component, roles []string) map[string]string {
+	out := map[string]string{}
+	for i, held := range components {
+		if held.Role != roles[i] {
+			out[held.Role] = roles[i]
+		}
+	}
+	return out
 }
 
 // isSameVersion reports whether the channel can stand beside what the record holds:
@@ -100,26 +209,43 @@ func hasNoDirection(held *db.Component, c *ingest.Channel) bool {
 	return c.Orientation.Axis == ingest.AxisUnknown || held.Axis == axes[ingest.AxisUnknown]
 }
 
-// findRecord returns the record to which the channel belongs by what it states,
-// or the code of a new one.
-func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (code string, r db.StoredRecord, err error) {
+// findRecord returns the code of the record to which the channel belongs by what it
+// states, which may be a new one.
+func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (code string, err error) {
 	code, stated := ingest.RecordID(c, res.stem)
-	if r, _, err = tx.FindRecord(ctx, code); err != nil {
-		return code, r, err
+	if !stated {
+		return findInFolder(ctx, tx, res, code)
 	}
-	if !stated && len(r.Components) > 0 && folderOf(r.Components[0].SourcePath) != folderOf(res.source.Path) {
-		code += "_" + folderSlug(res)
-		r, _, err = tx.FindRecord(ctx, code)
-		return code, r, err
-	}
-	if !startsApart(r.Start, c.Start) {
-		return code, r, nil
+	r, _, err := tx.FindRecord(ctx, code)
+	if err != nil || !startsApart(r.Start, c.Start) {
+		return code, err
 	}
 	later, ok, err := tx.FindTrigger(ctx, code, c.Start, startTolerance)
 	if ok || err != nil {
-		return later.Code, later, err
+		return later.Code, err
 	}
-	return code + c.Start.UTC().Format("_T150405"), db.StoredRecord{}, nil
+	return code + c.Start.UTC().Format("_T150405"), nil
+}
+
+// findInFolder returns the code of the record of files without identity that lie in the
+// file's folder, by what their names have in common: code, or the folder's name where that
+// is nothing but a direction. In other folders others may have that code.
+func findInFolder(ctx context.Context, tx *db.Tx, res result, code string) (string, error) {
+	if base, o := ingest.SplitStem(res.stem); base == res.stem && o.Axis != ingest.AxisUnknown {
+		code = cmp.Or(ingest.Slug(path.Base(folderOf(res.source.Path))), code)
+	}
+	for n, base := 1, code; ; n++ {
+		switch {
+		case n == 2:
+			code = base + "_" + folderSlug(res)
+		case n > 2:
+			code = fmt.Sprintf("%s_%s-%d", base, folderSlug(res), n-1)
+		}
+		r, _, err := tx.FindRecord(ctx, code)
+		if err != nil || len(r.Components) == 0 || archive.Folder(r.Components[0].SourcePath) == archive.Folder(res.source.Path) {
+			return code, err
+		}
+	}
 }
 
 // folderOf is the folder of a file, of a member of an archive that in which it
@@ -153,7 +279,7 @@ func startsApart(a, b time.Time) bool {
 
 // join gives the channel a role beside the record's components, or returns the
 // component that has its direction.
-func join(code string, r db.StoredRecord, c *ingest.Channel) (placement, *db.Component) {
+func join(r db.StoredRecord, c *ingest.Channel) (placement, *db.Component) {
 	if rival := sameDirection(r.Components, c.Orientation); rival != nil {
 		return placement{}, rival
 	}
@@ -163,13 +289,7 @@ func join(code string, r db.StoredRecord, c *ingest.Channel) (placement, *db.Com
 			return placement{}, &r.Components[min(i, len(r.Components)-1)]
 		}
 	}
-	p := placement{code: code, newRecord: r.ID == 0, role: roles[len(roles)-1], renamed: map[string]string{}}
-	for i, held := range r.Components {
-		if held.Role != roles[i] {
-			p.renamed[held.Role] = roles[i]
-		}
-	}
-	return p, nil
+	return placement{code: r.Code, newRecord: r.ID == 0, role: roles[len(roles)-1], renamed: renamed(r.Components, roles)}, nil
 }
 
 // sameDirection returns the component that measures exactly the direction o.

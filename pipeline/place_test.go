@@ -2,12 +2,15 @@ package pipeline
 
 import (
 	"fmt"
+	"math/rand/v2"
+	"slices"
 	"strings"
 	"testing"
 	"time"
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/ingest/archive"
 )
 
 // seat is a channel to place and where it shall come to stand.
@@ -92,6 +95,22 @@ func TestPlace(t *testing.T) {
 		{"components without identity join within a folder only", []seat{
 			{towards(anonymous, 0), "EV1/ST07_N.csv", "ST07 h1"}, {towards(anonymous, 90), "EV2/ST07_E.csv", "ST07_ev2 h2"}, {towards(anonymous, 90), "EV1/ST07_E.csv", "ST07 h2"},
 		}},
+		{"folders of one name under several that are named", []seat{
+			{towards(anonymous, 0), "a/EQ/rec_N.csv", "rec h1"}, {towards(anonymous, 0), "b/EQ/rec_N.csv", "rec_b-eq h1"}, {towards(anonymous, 90), "c/EQ/rec_E.csv", "rec_c-eq h2"},
+		}},
+		{"files of several archives", []seat{
+			{towards(anonymous, 0), "in/s1.zip!d/rec_N.csv", "rec h1"}, {towards(anonymous, 0), "in/s2.zip!d/rec_N.csv", "rec_in-d h1"},
+			{towards(anonymous, 90), "in/s3.zip!d/rec_E.csv", "rec_in-d-2 h2"}, {towards(anonymous, 90), "in/s1.zip!d/rec_E.csv", "rec h2"},
+			{towards(anonymous, 90), "in/s2.zip!d/rec_E.csv", "rec_in-d h2"},
+		}},
+		{"files under a compressor lie where they would without", []seat{
+			{towards(anonymous, 0), "in/rec_N.csv.gz!rec_N.csv", "rec h1"}, {towards(anonymous, 90), "in/rec_E.csv.gz!rec_E.csv", "rec h2"},
+			{towards(anonymous, 0), "in/a.zip!x_N.csv.gz!x_N.csv", "x h1"}, {towards(anonymous, 90), "in/a.zip!x_E.csv", "x h2"},
+		}},
+		{"names that are a direction only go by the folder", []seat{
+			{towards(anonymous, 0), "in/EQ2/N.csv", "eq2 h1"}, {towards(anonymous, 90), "in/EQ2/E.csv", "eq2 h2"}, {towards(anonymous, 90), "in/EQ3/E.csv", "eq3 h2"},
+			{towards(anonymous, 0), "N.csv", "N h1"},
+		}},
 		{"another content of the same file", []seat{
 			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon), "a", "E_S h1"},
 		}},
@@ -99,6 +118,78 @@ func TestPlace(t *testing.T) {
 	for _, tt := range tests {
 		t.Run(tt.name, func(t *testing.T) { placeAll(t, tt.seats) })
 	}
+}
+
+// What was delivered in one folder or file stays together, whichever delivery comes first
+// and whichever lacks a horizontal.
+func TestPlaceTogether(t *testing.T) {
+	noon := time.Date(2026, 3, 12, 12, 0, 0, 0, time.UTC)
+	north, east, up := at(horizontal(0), "", noon), at(horizontal(90), "", noon), at(vertical, "", noon)
+	folders := []delivery{{"x/N", []ingest.Channel{north}}, {"y/N", []ingest.Channel{north}}, {"y/E", []ingest.Channel{east}}, {"y/Z", []ingest.Channel{up}}}
+	files := []delivery{{"x/one", []ingest.Channel{east}}, {"x/all", []ingest.Channel{north, east, up}}}
+	for _, tt := range []struct {
+		name  string
+		files []delivery
+		want  string
+	}{
+		{"folders", folders, "[x/N] [y/E y/N y/Z]"},
+		{"files of a folder", files, "[x/all x/all x/all] [x/one]"},
+	} {
+		for range 12 {
+			rand.Shuffle(len(tt.files), func(i, j int) { tt.files[i], tt.files[j] = tt.files[j], tt.files[i] })
+			if got := together(t, tt.files); got != tt.want {
+				t.Errorf("%s in the order %v: %s, want %s", tt.name, tt.files, got, tt.want)
+			}
+		}
+	}
+}
+
+type delivery struct {
+	path     string
+	channels []ingest.Channel
+}
+
+func (d delivery) String() string { return d.path }
+
+// together lists the files of each record, in any order of the records' codes, and checks
+// that what was computed of a component is where the component is.
+func together(t *testing.T, files []delivery) string {
+	t.Helper()
+	store := newStore(t)
+	run, err := begin(t.Context(), store, withDefaults(options()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil))
+	for _, f := range files {
+		res := result{source: db.Source{Path: f.path, SHA256: f.path, Format: "invented"}, rel: f.path, stem: stemOf(f.path), outcome: Stored}
+		for i, c := range f.channels {
+			c.DistanceKM = ingest.Known(float64(len(f.path)))
+			res.channels = append(res.channels, solved{channel: c, samples: 1, digest: f.path, data: []byte{0},
+				accounts: []account{{by: db.ByHeader, source: f.path, channel: c}},
+				spectra:  db.NewSpectra(nil, map[string]float64{db.MeasurePGA: c.Orientation.AzimuthDeg.Value, db.MeasurePGV: float64(i), db.MeasurePGD: 1}, nil)})
+		}
+		if err := w.storeBatch(t.Context(), []result{res}); err != nil {
+			t.Fatal(err)
+		}
+	}
+	records := map[string][]string{}
+	for _, c := range componentsOf(t, store) {
+		records[c.Record.Code] = append(records[c.Record.Code], c.SourcePath)
+		if want := orientationOf(c.Component).AzimuthDeg.Value; c.Peaks.PGA != want {
+			t.Errorf("%v: %s %s has the PGA %v, want %v", files, c.Record.Code, c.Role, c.Peaks.PGA, want)
+		}
+		if c.Record.Distances.BestKM == nil || *c.Record.Distances.BestKM != float64(len(c.SourcePath)) {
+			t.Errorf("%v: %s %s of %s has the distance %v", files, c.Record.Code, c.Role, c.SourcePath, c.Record.Distances.BestKM)
+		}
+	}
+	var out []string
+	for _, paths := range records {
+		slices.Sort(paths)
+		out = append(out, fmt.Sprint(paths))
+	}
+	slices.Sort(out)
+	return strings.Join(out, " ")
 }
 
 // placeAll seats the channels one after the other in an empty store, and looks
@@ -113,8 +204,9 @@ func placeAll(t *testing.T, seats []seat) {
 	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil))
 	refused := map[string]string{}
 	for i, s := range seats {
+		parts := archive.Split(s.path)
 		res := result{
-			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, rel: s.path, stem: stemOf(s.path), outcome: Stored,
+			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, rel: s.path, stem: stemOf(parts[len(parts)-1]), outcome: Stored,
 			channels: []solved{{channel: s.channel, samples: 1, digest: "-", data: []byte{0},
 				spectra: db.NewSpectra(nil, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1}, nil)}},
 		}

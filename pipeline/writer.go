@@ -184,6 +184,9 @@ func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, path string, s sol
 	if err := tx.SetRoles(ctx, record.ID, p.renamed); err != nil {
 		return err
 	}
+	if err := w.bring(ctx, tx, p.from, record.ID); err != nil {
+		return err
+	}
 	c := componentOf(s, p.role)
 	c.SourceID = sourceID
 	twins, err := tx.FlagTwins(ctx, record.ID, s.digest)
@@ -192,6 +195,18 @@ func (w *writer) storeChannel(ctx context.Context, tx *db.Tx, path string, s sol
 	}
 	c.Findings = append(c.Findings, twins...)
 	return tx.AddComponent(ctx, record.ID, c, s.data, s.digest, w.run.generation.ID, s.spectra)
+}
+
+// bring moves what leaves another record into this one.
+func (w *writer) bring(ctx context.Context, tx *db.Tx, from *departure, recordID int64) error {
+	if from == nil {
+		return nil
+	}
+	w.settler.touched[db.Subject{Kind: db.SubjectRecord, ID: from.recordID}] = true
+	if err := tx.MoveComponents(ctx, from.recordID, recordID, from.moved, from.paths); err != nil {
+		return err
+	}
+	return tx.SetRoles(ctx, from.recordID, from.renamed)
 }
 
 // reject stores one cause against the file.

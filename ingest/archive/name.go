@@ -57,6 +57,19 @@ func InPlace(p string) string {
 	return path.Join(parts...)
 }
 
+// Folder is where a file lies, with slashes: its folder, and of a member of an archive
+// the archive and the folder inside, since two archives may have folders of one name. The
+// one file under a compressor lies where that one does.
+func Folder(p string) string {
+	parts := Split(strings.ReplaceAll(p, `\`, "/"))
+	last := len(parts) - 1
+	for last > 0 && parts[last] == clean(withoutSuffix(path.Base(parts[last-1]))) {
+		last--
+	}
+	parts[last] = path.Dir(parts[last])
+	return strings.Join(parts[:last+1], Separator)
+}
+
 // clean makes a label of a member's name: relative, with slashes, without "..",
 // drive or control characters, valid UTF-8, never empty, and free of the
 // separator. Bytes that may not stand are written as %XX, and what goes beyond
