@@ -32,8 +32,11 @@ var magics = []struct {
 	kind kind
 }{
 	{"PK\x03\x04", zipArchive}, {"PK\x05\x06", zipArchive}, {"PK\x07\x08", zipArchive},
-	{"\x1f\x8b\x08", gzipFile}, {"BZh", bzip2File},
+	{gzipMagic, gzipFile}, {"BZh", bzip2File},
 }
+
+// gzipMagic is the identification and the only method of RFC 1952.
+const gzipMagic = "\x1f\x8b\x08"
 
 // bzip2Block is the mark of a first block, and of the end where there is none,
 // behind the digit that follows BZh: a text may begin with the letters alone.

@@ -1,10 +1,7 @@
 package archive
 
 import (
-	"archive/tar"
-	"archive/zip"
 	"bytes"
-	"compress/gzip"
 	"context"
 	"errors"
 	"fmt"
@@ -178,24 +175,3 @@ func (w *walk) content(m Member, base string, depth int) error {
 	}
 	return w.archive(m.Name, base, io.NewSectionReader(bytes.NewReader(m.Data), 0, int64(len(m.Data))), depth+1)
 }
-
-// inWords says what the libraries' errors mean for an archive.
-func inWords(err error) error {
-	for _, known := range []struct {
-		err   error
-		words string
-	}{
-		{io.ErrUnexpectedEOF, "the data end in the middle: truncated?"},
-		{zip.ErrChecksum, "the checksum differs: damaged"}, {gzip.ErrChecksum, "the checksum differs: damaged"},
-		{zip.ErrFormat, "not what the directory of the zip archive says: damaged"},
-		{tar.ErrHeader, "damaged header"}, {gzip.ErrHeader, "damaged header, or bytes behind the end of the compressed data"},
-	} {
-		if errors.Is(err, known.err) {
-			return errors.New(known.words)
-		}
-	}
-	return err
-}
-
-// at is an error met at a member.
-func at(name string, err error) error { return fmt.Errorf("%s: %w", clean(name), inWords(err)) }
