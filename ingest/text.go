@@ -116,22 +116,25 @@ func looksUTF16(data []byte) bool {
 	return max(nul[0], nul[1]) > half*9/10 && min(nul[0], nul[1]) < half/10
 }
 
-// refuseBinary looks at the first 4 KiB and refuses NUL bytes or more than 5 %
-// control characters, and any NUL further on.
+// refuseBinary looks at the first 4 KiB and refuses more than 5 % of control characters
+// among what is not NUL, or more NUL bytes than others. Any NUL in what is else a text, or
+// further on, is damage, and its line is told.
 func refuseBinary(data []byte) error {
 	head := data[:min(len(data), 4096)]
-	control := 0
+	nul, control := 0, 0
 	for _, b := range head {
-		if b < 0x20 && b != '\t' && b != '\n' && b != '\r' && b != '\f' {
+		switch {
+		case b == 0:
+			nul++
+		case b < 0x20 && b != '\t' && b != '\n' && b != '\r' && b != '\f':
 			control++
 		}
 	}
-	if bytes.IndexByte(head, 0) >= 0 || control*20 > len(head) {
+	if nul > len(head)/2 || control*20 > len(head)-nul {
 		return refuse(0, "", "file is binary, not a text record")
 	}
 	if i := bytes.IndexByte(data, 0); i >= 0 {
-		line := 1 + bytes.Count(data[:i], []byte("\n"))
-		return refuse(line, "", "NUL byte in the text: the file is damaged")
+		return refuse(len(splitLines(data[:i+1])), "", "NUL byte in the text: the file is damaged")
 	}
 	return nil
 }

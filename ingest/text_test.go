@@ -40,3 +40,23 @@ func TestNewTextRefusesArchives(t *testing.T) {
 		}
 	}
 }
+
+// A text with NUL bytes is damaged at a line; what has control characters or many NUL
+// bytes is no text.
+func TestNewTextRefusesNULs(t *testing.T) {
+	const damaged, binary = "NUL byte in the text: the file is damaged", "file is binary, not a text record"
+	lines := strings.Repeat("0.125\n", 50)
+	for name, tt := range map[string]struct{ data, want string }{
+		"one":                {lines + "0.1\x0025\n" + lines, ":51: " + damaged},
+		"behind a line end":  {lines + "\x00\n", ":51: " + damaged},
+		"with CR alone":      {strings.ReplaceAll(lines, "\n", "\r") + "0.1\x0025\r", ":51: " + damaged},
+		"a sector of zeros":  {strings.Repeat(lines, 3) + strings.Repeat("\x00", 512) + lines, ":151: " + damaged},
+		"far behind":         {strings.Repeat(lines, 100) + "\x001", ":5001: " + damaged},
+		"more NUL than text": {lines + strings.Repeat("\x00", 512) + lines[:100], ": " + binary},
+		"with controls":      {strings.Repeat("\x01\x02\x00abc", 50), ": " + binary},
+	} {
+		if _, err := NewText([]byte(tt.data)); err == nil || err.Error() != tt.want {
+			t.Errorf("%s: %v, want %s", name, err, tt.want)
+		}
+	}
+}
