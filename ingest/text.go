@@ -32,12 +32,16 @@ func NewText(data []byte) (*Text, error) {
 			return nil, refuse(0, "", "file is %s: unpack it first (read in place are %s)", p.name, archive.Opened)
 		}
 	}
+	whole := data
 	data, err := decode(data)
 	if err != nil {
 		return nil, err
 	}
 	data = bytes.TrimRight(data, "\x00\x1a")
 	if err := refuseBinary(data); err != nil {
+		if archive.EndsInZip(whole) {
+			return nil, refuse(0, "", "file is a zip archive behind a program or script that unpacks it: unpack it first (read in place are %s)", archive.Opened)
+		}
 		return nil, err
 	}
 	t := &Text{lines: splitLines(data), endsLine: len(data) > 0 && (data[len(data)-1] == '\n' || data[len(data)-1] == '\r')}

@@ -5,6 +5,8 @@ import (
 	"math/rand/v2"
 	"strings"
 	"testing"
+
+	"swaybook/ingest/archive/archivetest"
 )
 
 // TestSplitLines compares with the plain way: CRLF and CR made LF, then split.
@@ -38,6 +40,26 @@ func TestNewTextRefusesArchives(t *testing.T) {
 		if _, err := NewText([]byte(head + "invented")); err == nil || strings.TrimPrefix(err.Error(), ": ") != "file is "+want+rest {
 			t.Errorf("%q: %v, want %s", head, err, want)
 		}
+	}
+}
+
+// A zip archive that unpacks itself begins as a script or a program does.
+func TestNewTextRefusesSelfExtractingArchives(t *testing.T) {
+	packed := archivetest.Zip(archivetest.File("a", "0.125"))
+	commented := bytes.Clone(packed)
+	commented[len(commented)-2] = 9
+	const want = ": file is a zip archive behind a program or script that unpacks it: unpack it first (read in place are .zip, .tar, .tar.gz, .tar.bz2, .gz and .bz2)"
+	for name, data := range map[string]string{
+		"script":         "#!/bin/sh\nunzip \"$0\"\nexit\n" + string(packed),
+		"program":        "MZ\x90\x00\x03\x00\x00\x00" + strings.Repeat("\x00", 5000) + string(packed),
+		"with a comment": "#!/bin/sh\n" + string(commented) + "invented\n",
+	} {
+		if _, err := NewText([]byte(data)); err == nil || err.Error() != want {
+			t.Errorf("%s: %v, want %s", name, err, want)
+		}
+	}
+	if _, err := NewText([]byte("#!/bin/sh\n" + string(commented) + "of another length\n")); err == nil || err.Error() == want {
+		t.Errorf("bytes behind the archive: %v", err)
 	}
 }
 

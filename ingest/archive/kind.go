@@ -2,6 +2,7 @@ package archive
 
 import (
 	"bytes"
+	"encoding/binary"
 	"slices"
 	"strconv"
 	"strings"
@@ -31,7 +32,7 @@ var magics = []struct {
 	text string
 	kind kind
 }{
-	{"PK\x03\x04", zipArchive}, {"PK\x05\x06", zipArchive}, {"PK\x07\x08", zipArchive},
+	{"PK\x03\x04", zipArchive}, {zipEndMagic, zipArchive}, {"PK\x07\x08", zipArchive},
 	{gzipMagic, gzipFile}, {"BZh", bzip2File},
 }
 
@@ -60,6 +61,28 @@ func kindOf(head []byte) kind {
 		return tarArchive
 	}
 	return noArchive
+}
+
+// Where a zip archive's end record keeps the length of the comment that ends it.
+//
+// Source: PKWARE, APPNOTE.TXT, 4.3.16.
+const (
+	zipEndMagic   = "PK\x05\x06"
+	zipEndSize    = 22
+	zipCommentAt  = 20
+	zipCommentMax = 1<<16 - 1
+)
+
+// EndsInZip reports whether the content of a file ends as a zip archive does, whatever it
+// begins with: a program that unpacks what is behind it.
+func EndsInZip(data []byte) bool {
+	tail := data[max(0, len(data)-zipEndSize-zipCommentMax):]
+	for at := bytes.LastIndex(tail, []byte(zipEndMagic)); at >= 0; at = bytes.LastIndex(tail[:at], []byte(zipEndMagic)) {
+		if rest := tail[at:]; len(rest) >= zipEndSize && zipEndSize+int(binary.LittleEndian.Uint16(rest[zipCommentAt:])) == len(rest) {
+			return true
+		}
+	}
+	return false
 }
 
 func isBzip2(head []byte) bool {
