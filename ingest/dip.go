@@ -17,6 +17,9 @@ const (
 	axisTolerance = 5
 )
 
+// mustBeTurned is what to do with channels that are neither.
+const mustBeTurned = "the three channels of the sensor must be turned into vertical, north and east first"
+
 // axisOfDip tells a horizontal from a vertical by its dip. What is neither is an
 // error.
 func axisOfDip(dipDeg float64) (Axis, error) {
@@ -26,7 +29,7 @@ func axisOfDip(dipDeg float64) (Axis, error) {
 	case dip >= verticalDip:
 		return AxisVertical, nil
 	}
-	return AxisUnknown, fmt.Errorf("a dip of %g° is neither horizontal (up to %d°) nor vertical (from %d°): the three channels of the sensor must be turned into vertical, north and east first",
+	return AxisUnknown, fmt.Errorf("a dip of %g° is neither horizontal (up to %d°) nor vertical (from %d°): "+mustBeTurned,
 		dipDeg, horizontalDip, verticalDip)
 }
 

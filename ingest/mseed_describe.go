@@ -141,6 +141,17 @@ func (c *mseedChannel) place(e *fdsnxml.Channel) {
 	}
 }
 
+// The orientation codes of axes of which an azimuth without a dip tells nothing: those of
+// a symmetric triaxial sensor, on edges of a cube that stands on a corner, and others that
+// need not be level.
+//
+// Source: FDSN source identifiers (2023), orientation codes A, B, C; U, V, W; 1, 2, 3 (from
+// memory). That 1 and 2 are level where nobody says otherwise is common practice.
+const (
+	triaxialCodes = "ABC"
+	anyAxisCodes  = "UVW3"
+)
+
 // orient takes the direction from dip and azimuth, which are down from the
 // horizontal and clockwise from north, else from the letters E, N and Z; other
 // letters say nothing. A tilted sensor is refused.
@@ -152,15 +163,22 @@ func (c *mseedChannel) orient(e *fdsnxml.Channel) error {
 	}
 	byLetter.Label = letter
 	c.Orientation = byLetter
-	if e == nil {
-		return nil
+	dip := fdsnxml.Number{}
+	if e != nil {
+		dip = e.DipDeg
 	}
-	if dip := e.DipDeg; dip.Known {
+	switch {
+	case dip.Known:
 		if err := c.byDip(dip.Value); err != nil {
 			return err
 		}
+	case strings.Contains(triaxialCodes, letter):
+		return refuse(0, c.id.String(), "orientation code %s is an axis of a symmetric triaxial sensor, neither horizontal nor vertical, and no dip is stated: "+mustBeTurned, letter)
+	case e != nil && e.AzimuthDeg.Known && strings.Contains(anyAxisCodes, letter):
+		c.warn("an azimuth of %g° and no dip: a channel %s need not be horizontal", e.AzimuthDeg.Value, letter)
+		return nil
 	}
-	if !e.AzimuthDeg.Known || c.Orientation.Axis == AxisVertical {
+	if e == nil || !e.AzimuthDeg.Known || c.Orientation.Axis == AxisVertical {
 		return nil
 	}
 	c.Orientation.Axis, c.Orientation.AzimuthDeg = AxisHorizontal, Number(e.AzimuthDeg)

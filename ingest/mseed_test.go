@@ -202,65 +202,6 @@ func TestMiniSEEDUnits(t *testing.T) {
 	}
 }
 
-// TestMiniSEEDOrientation changes what metadata say of HNE.
-func TestMiniSEEDOrientation(t *testing.T) {
-	const given = "<Azimuth>90</Azimuth><Dip>0</Dip>"
-	data := func(code string) []byte { r := mseedRecord(code, 0, 9000); return r.Series(3) }
-	cases := []struct {
-		name, code, by string
-		want           Orientation
-		warning        string
-	}{
-		{"azimuth", "HNE", "<Azimuth>93</Azimuth><Dip>0</Dip>", Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(93), Label: "E"}, ""},
-		{"azimuth of 360", "HNE", "<Azimuth>360</Azimuth><Dip>0</Dip>", Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(0), Label: "E"}, "a channel E with an azimuth of 0°: the azimuth taken"},
-		{"neither", "HNE", "", Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(90), Label: "E"}, ""},
-		{"neither, 1", "HN1", "", Orientation{Label: "1"}, ""},
-		{"dip alone, 1", "HN1", "<Dip>0</Dip>", Orientation{Axis: AxisHorizontal, Label: "1"}, ""},
-		{"dip alone, 3", "HN3", "<Dip>-90</Dip>", Orientation{Axis: AxisVertical, Label: "3"}, ""},
-		{"azimuth alone, Z", "HNZ", "<Azimuth>0</Azimuth>", Orientation{Axis: AxisVertical, Label: "Z"}, ""},
-		{"off the horizontal, a little", "HN2", "<Azimuth>200</Azimuth><Dip>-5</Dip>", Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(200), Label: "2"}, ""},
-		{"off the horizontal, as far as may be", "HN2", "<Azimuth>200</Azimuth><Dip>-15</Dip>", Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(200), Label: "2"}, "a dip of -15°: taken for horizontal"},
-		{"off the vertical, as far as may be", "HN2", "<Azimuth>200</Azimuth><Dip>75</Dip>", Orientation{Axis: AxisVertical, Label: "2"}, "a dip of 75°: taken for vertical"},
-		{"off the vertical, a little", "HN2", "<Azimuth>200</Azimuth><Dip>-85</Dip>", Orientation{Axis: AxisVertical, Label: "2"}, ""},
-		{"an E that stands upright", "HNE", "<Dip>-90</Dip>", Orientation{Axis: AxisVertical, Label: "E"}, ""},
-	}
-	for _, k := range cases {
-		replace := []string{given, k.by, `code="HNE"`, `code="` + k.code + `"`}
-		if k.code == "HNZ" {
-			replace = append([]string{`code="HNZ" locationCode="00"`, `code="HNX" locationCode="00"`}, replace...)
-		}
-		c := parseMiniSEED(t, data(k.code), stationHints(t, replace...))[0]
-		if c.Orientation != k.want || strings.Join(c.Warnings, "; ") != k.warning {
-			t.Errorf("%s: %+v, warnings %q, want %+v, %q", k.name, c.Orientation, c.Warnings, k.want, k.warning)
-		}
-	}
-}
-
-// TestMiniSEEDTilted has sensors that are neither horizontal nor vertical, one
-// alone, and three at the angle of a symmetric triaxial arrangement, whose
-// tangent is 1/√2: they stand for no direction of the ground. Others of the file
-// are read.
-func TestMiniSEEDTilted(t *testing.T) {
-	const given, words = "<Azimuth>90</Azimuth><Dip>0</Dip>", "° is neither horizontal (up to 15°) nor vertical (from 75°): the three channels of the sensor must be turned into vertical, north and east first"
-	e, n := mseedRecord("HNE", 0, 9000), mseedRecord("HNN", 0, 9000)
-	for dip, refused := range map[string]bool{
-		"15": false, "15.01": true, "35.26": true, "-35.26": true, "45": true, "-74.99": true, "75": false, "-75": false,
-	} {
-		hints := stationHints(t, given, "<Azimuth>90</Azimuth><Dip>"+dip+"</Dip>")
-		_, channels, err := Parse("case", append(e.Series(3), n.Series(3)...), hints)
-		want := "case: XX.TARN.00.HNE: a dip of " + dip + words
-		switch {
-		case !refused && (err != nil || len(channels) != 2):
-			t.Errorf("dip %s: %d channels, %v", dip, len(channels), err)
-		case refused && (err == nil || err.Error() != want || len(channels) != 1 || channels[0].ChannelCode != "HNN"):
-			t.Errorf("dip %s: %d channels,\n%v, want\n%s", dip, len(channels), err, want)
-		}
-		if _, channels, err = Parse("case", e.Series(3), hints); refused && (err == nil || err.Error() != want || len(channels) > 0) {
-			t.Errorf("dip %s alone: %d channels, %v", dip, len(channels), err)
-		}
-	}
-}
-
 func TestMiniSEEDAlignment(t *testing.T) {
 	shifted := mseedRecord("HNN", 0, 9000)
 	shifted.Start = shifted.Start.Add(3 * time.Millisecond)
