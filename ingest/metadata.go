@@ -1,14 +1,12 @@
 package ingest
 
 import (
-	"cmp"
 	"context"
 	"errors"
 	"fmt"
 	"os"
 	"path/filepath"
 	"slices"
-	"strconv"
 	"strings"
 	"sync"
 	"time"
@@ -24,9 +22,7 @@ type Metadata struct {
 	notes     []MetadataNote
 
 	ordering sync.Mutex // guards what follows
-	events   []CatalogueEvent
-	known    map[string]int // their positions by public identifier
-	ordered  bool
+	quakes   quakes
 }
 
 // MetadataNote is what of a document was not taken, or is doubtful, and the line
@@ -35,16 +31,6 @@ type MetadataNote struct {
 	Path string
 	Line int
 	Text string
-}
-
-// CatalogueEvent is an event of a QuakeML document.
-type CatalogueEvent struct {
-	Event
-	// PublicID is the document's own identifier, unique in the world, or made of time
-	// and place where it states none.
-	PublicID string
-	// Created is when this version of it came about, zero where the document does not say.
-	Created time.Time
 }
 
 // The reasons for which a file is no record but was put to use.
@@ -157,113 +143,9 @@ func (m *Metadata) Notes() []MetadataNote {
 	return m.notes
 }
 
-// addEvents keeps the events of a document. Of an event that is there already the later
-// version stays.
-func (m *Metadata) addEvents(path string, events []fdsnxml.Event) {
-	m.ordering.Lock()
-	defer m.ordering.Unlock()
-	if m.known == nil {
-		m.known = map[string]int{}
-	}
-	for i := range events {
-		e, doubts := catalogueEvent(&events[i])
-		for _, d := range doubts {
-			m.notes = append(m.notes, MetadataNote{path, events[i].Line, fmt.Sprintf("event %.80s: %s", e.PublicID, d)})
-		}
-		at, ok := m.known[e.PublicID]
-		switch {
-		case !ok:
-			m.known[e.PublicID] = len(m.events)
-			m.events = append(m.events, e)
-		case !m.events[at].Supersedes(&e):
-			m.events[at] = e
-		}
-		m.ordered = false
-	}
-}
-
-// Supersedes reports whether e is a later version than another of the same event that
-// was read after it: where both say when they came about. Else the last read is taken.
-func (e *CatalogueEvent) Supersedes(next *CatalogueEvent) bool {
-	return !next.Created.IsZero() && e.Created.After(next.Created)
-}
-
 // IsEmpty reports whether no document has been read.
 func (m *Metadata) IsEmpty() bool {
-	return m == nil || len(m.Events())+len(m.inventory.Stations)+len(m.inventory.Channels) == 0
-}
-
-// Events returns the events in the order of their origin times. The caller must
-// not change them.
-func (m *Metadata) Events() []CatalogueEvent {
-	if m == nil {
-		return nil
-	}
-	m.ordering.Lock()
-	defer m.ordering.Unlock()
-	m.order()
-	return m.events
-}
-
-// Event returns the event with this public identifier.
-func (m *Metadata) Event(publicID string) (e CatalogueEvent, ok bool) {
-	if m == nil {
-		return e, false
-	}
-	m.ordering.Lock()
-	defer m.ordering.Unlock()
-	m.order()
-	at, ok := m.known[publicID]
-	if ok {
-		e = m.events[at]
-	}
-	return e, ok
-}
-
-// order sorts the events by origin time, with the lock held.
-func (m *Metadata) order() {
-	if !m.ordered {
-		slices.SortFunc(m.events, func(a, b CatalogueEvent) int {
-			return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
-		})
-		for i := range m.events {
-			m.known[m.events[i].PublicID] = i
-		}
-		m.ordered = true
-	}
-}
-
-// catalogueEvent returns the event as it is used, and what is doubtful of it: it is
-// held to the limits that headers are.
-func catalogueEvent(e *fdsnxml.Event) (out CatalogueEvent, doubts []string) {
-	out.PublicID, out.Created = orElse(e.PublicID, placeID(e)), e.Created
-	c := Channel{Event: Event{
-		ID: orElse(e.Code, lastOfID(out.PublicID)), Name: e.Name, Origin: e.Origin,
-		Latitude: Known(e.Latitude), Longitude: Known(e.Longitude), MagnitudeType: e.MagnitudeType, Magnitude: Number(e.Magnitude),
-	}}
-	if e.DepthM.Known {
-		c.Event.DepthKM = Known(e.DepthM.Value / 1000)
-	}
-	dropImplausible(&c)
-	out.Event = c.Event
-	return out, append(slices.Clip(e.Warnings), c.Warnings...)
-}
-
-// placeID is the identifier of an event that states none: time and place, so that
-// it is the same in every document.
-func placeID(e *fdsnxml.Event) string {
-	degrees := func(v float64) string { return strconv.FormatFloat(v, 'f', -1, 64) }
-	return e.Origin.Format("20060102T150405.999Z") + "_" + degrees(e.Latitude) + "_" + degrees(e.Longitude)
-}
-
-// lastOfID is the part of a public identifier that names the event: the value of
-// eventid where it is a query, else what follows the last slash or number sign.
-func lastOfID(id string) string {
-	if _, query, ok := strings.Cut(id, "eventid="); ok {
-		code, _, _ := strings.Cut(query, "&")
-		return code
-	}
-	return id[strings.LastIndexAny(id, "/#")+1:]
+	return m == nil || m.saysNoEvents() && len(m.inventory.Stations)+len(m.inventory.Channels) == 0
 }
 
 // Station returns what StationXML says of the channel's station, by network and

@@ -24,6 +24,9 @@ type Event struct {
 	// Created is when this version of the event came about, or else its origin; zero
 	// where not stated.
 	Created time.Time
+	// Withdrawn says that there was no such event, or nowhere. Nothing but PublicID,
+	// Created and Line is set then.
+	Withdrawn bool
 	// Line is that of the event's start tag.
 	Line int
 	// Warnings say what had to be chosen.
@@ -31,7 +34,10 @@ type Event struct {
 }
 
 // noEvents are the types of events of which there was none, or nowhere.
-var noEvents = []string{"not existing", "not locatable"}
+// They are how an event that was published before is withdrawn.
+//
+// Source: QuakeML 1.2, EventType (from memory; "not locatable" is of version 1.1).
+var noEvents = []string{"not existing", "not reported", "not locatable"}
 
 // The elements of QuakeML that are read.
 type (
@@ -67,7 +73,8 @@ type (
 )
 
 // ReadEvents reads a QuakeML document. Events that cannot be used are left out,
-// and the notes say why. An error is an *Error with the line, says that the document
+// and the notes say why; those that are withdrawn and have an identifier are noted too, and
+// returned as such. An error is an *Error with the line, says that the document
 // is too large, or is the context's.
 func ReadEvents(ctx context.Context, data []byte) (events []Event, left []Note, err error) {
 	d, err := open(ctx, data, eventRoot, eventNamespace)
@@ -89,6 +96,8 @@ func ReadEvents(ctx context.Context, data []byte) (events []Event, left []Note, 
 			event, err := raw.event(line)
 			if err != nil {
 				left = append(left, leftOut(line, "event "+event.PublicID, err))
+			}
+			if err != nil && (!event.Withdrawn || event.PublicID == "") {
 				return nil
 			}
 			events = append(events, event)
@@ -104,7 +113,7 @@ func ReadEvents(ctx context.Context, data []byte) (events []Event, left []Note, 
 func (raw *xmlEvent) event(line int) (e Event, err error) {
 	e = Event{PublicID: strings.TrimSpace(raw.PublicID), Code: strings.TrimSpace(raw.Code), Name: raw.name(), Line: line}
 	if kind := strings.TrimSpace(raw.Type); slices.Contains(noEvents, kind) {
-		return e, fmt.Errorf("its type is %q", kind)
+		return raw.withdrawn(e), fmt.Errorf("its type is %q", kind)
 	}
 	o, err := raw.origin(&e)
 	if err == nil {
@@ -115,6 +124,15 @@ func (raw *xmlEvent) event(line int) (e Event, err error) {
 		err = raw.magnitude(&e)
 	}
 	return e, err
+}
+
+// withdrawn is the event of which there was none.
+func (raw *xmlEvent) withdrawn(e Event) Event {
+	texts := []string{raw.Created}
+	if o, err := raw.origin(&e); err == nil {
+		texts = append(texts, o.Created)
+	}
+	return Event{PublicID: e.PublicID, Created: created(texts...), Withdrawn: true, Line: e.Line}
 }
 
 // created is the first of the texts that is a time. Nothing else depends on it, so one
