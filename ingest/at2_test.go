@@ -220,7 +220,7 @@ func TestAT2Layouts(t *testing.T) {
 		"tabs":                  join(base[:4], strings.Split(strings.ReplaceAll(strings.Join(base[4:], "\n"), "  ", "\t"), "\n")),
 	}
 	for name, lines := range cases {
-		_, channels, err := Parse("case", []byte(strings.Join(lines, "\n")), Hints{})
+		_, channels, err := Parse(t.Context(), "case", []byte(strings.Join(lines, "\n")), Hints{})
 		if err != nil {
 			t.Errorf("%s: %v", name, err)
 		} else if !equalSeries(channels[0].Acceleration, plain.Acceleration) {

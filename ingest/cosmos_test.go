@@ -13,7 +13,7 @@ import (
 func readCosmosFixture(t *testing.T, name string) []Channel {
 	t.Helper()
 	path := filepath.Join(recordsDir("cosmos"), name)
-	format, channels, err := Parse(path, readFile(t, path), Hints{})
+	format, channels, err := Parse(t.Context(), path, readFile(t, path), Hints{})
 	if err != nil || format != "cosmos" {
 		t.Fatalf("Parse(%s) = %s, %v", path, format, err)
 	}

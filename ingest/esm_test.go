@@ -193,7 +193,7 @@ func TestESMRefusals(t *testing.T) {
 		})
 	}
 	wantRefusal(t, []string{""}, Hints{}, "", "case: file holds only blanks")
-	if _, _, err := Parse("f", nil, Hints{}); err == nil || err.Error() != "f: file is empty" {
+	if _, _, err := Parse(t.Context(), "f", nil, Hints{}); err == nil || err.Error() != "f: file is empty" {
 		t.Errorf("Parse of nothing = %v", err)
 	}
 }

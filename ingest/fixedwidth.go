@@ -71,7 +71,7 @@ func (l fieldLayout) lines(count int) int {
 func (l fieldLayout) room(t *Text, line, count int) int {
 	n := 0
 	for ; line <= t.Len() && n < count; line++ {
-		fields := (len(t.lines[line-1]) + l.width - 1) / l.width
+		fields := (len(t.Bytes(line)) + l.width - 1) / l.width
 		n += min(fields, l.perLine)
 	}
 	return min(n, count)
@@ -90,7 +90,7 @@ func (l fieldLayout) series(t *Text, line, count int, name string) ([]float64, i
 		if line > t.Len() {
 			return nil, 0, truncated(t.Len(), name, count, len(values))
 		}
-		b := t.lines[line-1]
+		b := t.Bytes(line)
 		before := len(values)
 		if values = l.appendLine(values, b, n, &points); len(values) != before+n {
 			return nil, 0, l.cause(t, line, len(values)-before, n, name, count, len(values))
@@ -177,14 +177,14 @@ func (l fieldLayout) placePoint(v float64, field []byte, points *pointCount) (fl
 
 // cause says why a line gave only got of its n values.
 func (l fieldLayout) cause(t *Text, line, got, n int, name string, count, total int) error {
-	b := t.lines[line-1]
+	b := t.Bytes(line)
 	trimmed := bytes.TrimSpace(b)
 	lo := got * l.width
 	if got == 0 && (isEndLine(trimmed) || hasWords(trimmed) || len(trimmed) == 0 && nextText(t, line) > t.Len()) {
 		return truncated(line, name, count, total)
 	}
 	if lo >= len(b) || len(bytes.TrimSpace(b[lo:])) == 0 {
-		if next := nextText(t, line+1); next > t.Len() || isEndLine(bytes.TrimSpace(t.lines[next-1])) {
+		if next := nextText(t, line+1); next > t.Len() || isEndLine(bytes.TrimSpace(t.Bytes(next))) {
 			return truncated(line, name, count, total)
 		}
 		return refuse(line, name, "line holds %d values, expected %d", got, n)
@@ -239,7 +239,7 @@ func (l fieldLayout) skip(t *Text, line, count int, name string) (int, error) {
 		if line > t.Len() {
 			return 0, truncated(t.Len(), name, count, done)
 		}
-		b := bytes.TrimRight(t.lines[line-1], " ")
+		b := bytes.TrimRight(t.Bytes(line), " ")
 		start := bytes.TrimLeft(b, " ")
 		if !startsNumber(start) {
 			return 0, truncated(line, name, count, done)
@@ -255,7 +255,7 @@ func (l fieldLayout) skip(t *Text, line, count int, name string) (int, error) {
 // nextText returns the first line from line on that is not blank, or one past
 // the end.
 func nextText(t *Text, line int) int {
-	for line <= t.Len() && len(bytes.TrimSpace(t.lines[line-1])) == 0 {
+	for line <= t.Len() && len(bytes.TrimSpace(t.Bytes(line))) == 0 {
 		line++
 	}
 	return line

@@ -37,7 +37,7 @@ func fuzzHinted(t *testing.T, reader Format, data []byte, hints Hints) {
 	var err error
 	recognised := false
 	used := allocated(func() {
-		content, _ = newContent(data)
+		content, _ = newContent(t.Context(), data)
 		if recognised = reader.Sniff(content) != ""; recognised {
 			channels, err = reader.Parse(content, hints)
 		}
@@ -150,7 +150,7 @@ func TestAnnouncedCountAllocatesNothing(t *testing.T) {
 		data := []byte(strings.Join(lines, "\n"))
 		var format string
 		var err error
-		used := allocated(func() { format, _, err = Parse("f", data, Hints{}) })
+		used := allocated(func() { format, _, err = Parse(t.Context(), "f", data, Hints{}) })
 		if err == nil || format != name || !strings.Contains(err.Error(), "announced 2000000000 values") {
 			t.Errorf("Parse = %s, %v, want the announced count refused", format, err)
 		}

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"slices"
@@ -12,15 +13,17 @@ import (
 // Content is what a file holds.
 type Content struct {
 	Data []byte
+	ctx  context.Context // that of Parse, which makes the content for one call
 	// Text is Data as lines. It has none where Data is no text, so that a reader
 	// of text need not ask.
 	Text *Text
 }
 
-// newContent splits data into lines. textErr says why data is no text.
-func newContent(data []byte) (c *Content, textErr error) {
-	c = &Content{Data: data}
-	if c.Text, textErr = NewText(data); textErr != nil {
+// newContent splits data into lines, reading which ends with the context. textErr says why
+// data is no text.
+func newContent(ctx context.Context, data []byte) (c *Content, textErr error) {
+	c = &Content{Data: data, ctx: ctx}
+	if c.Text, textErr = newText(data, ctx.Err); textErr != nil {
 		c.Text = &Text{}
 	}
 	return c, textErr
@@ -112,17 +115,30 @@ type Hints struct {
 // Parse recognises the file by its content and reads its channels. It returns
 // the name of the format beside them, "" where none was recognised. An error is
 // a *ParseError with its Path set, a *NotMotionError, or ChannelErrors about
-// channels that are not among those returned.
-func Parse(path string, data []byte, hints Hints) (format string, channels []Channel, err error) {
-	format, channels, err = parse(data, hints)
+// channels that are not among those returned; or the context's, with nothing beside it,
+// within a fraction of a second after that ended.
+func Parse(ctx context.Context, path string, data []byte, hints Hints) (format string, channels []Channel, err error) {
+	defer func() {
+		switch stop := recover().(type) {
+		case nil:
+		case interrupted:
+			format, channels, err = "", nil, stop.err
+		default:
+			panic(stop)
+		}
+	}()
+	format, channels, err = parse(ctx, data, hints)
+	if stopped := ctx.Err(); stopped != nil {
+		return "", nil, stopped
+	}
 	for _, pe := range parseErrors(err) {
 		pe.Path = path
 	}
 	return format, channels, err
 }
 
-func parse(data []byte, hints Hints) (string, []Channel, error) {
-	content, textErr := newContent(data)
+func parse(ctx context.Context, data []byte, hints Hints) (string, []Channel, error) {
+	content, textErr := newContent(ctx, data)
 	reader, err := recognise(content, textErr, hints.Layouts)
 	if err != nil {
 		return "", nil, err

@@ -17,7 +17,7 @@ func readFixture(t *testing.T, format, name string, hints Hints) Channel {
 	if err != nil {
 		t.Fatal(err)
 	}
-	got, channels, err := Parse(name, data, hints)
+	got, channels, err := Parse(t.Context(), name, data, hints)
 	if err != nil || got != format || len(channels) != 1 {
 		t.Fatalf("Parse(%s) = %q, %d channels, %v", name, got, len(channels), err)
 	}

@@ -304,7 +304,7 @@ func BenchmarkLayout(b *testing.B) {
 			b.SetBytes(int64(len(data)))
 			b.ReportAllocs()
 			for b.Loop() {
-				if _, _, err := Parse("f", data, Hints{Layouts: layouts}); err != nil {
+				if _, _, err := Parse(b.Context(), "f", data, Hints{Layouts: layouts}); err != nil {
 					b.Fatal(err)
 				}
 			}

@@ -13,7 +13,7 @@ import (
 // readExample reads an example file by the example layouts.
 func readExample(t *testing.T, name, format string) []Channel {
 	t.Helper()
-	got, channels, err := Parse(name, readFile(t, filepath.Join(layoutsDir, name)), Hints{Layouts: exampleLayouts(t)})
+	got, channels, err := Parse(t.Context(), name, readFile(t, filepath.Join(layoutsDir, name)), Hints{Layouts: exampleLayouts(t)})
 	if err != nil || got != format {
 		t.Fatalf("Parse(%s) = %q, %d channels, %v", name, got, len(channels), err)
 	}
@@ -58,7 +58,7 @@ func TestLayoutInReadme(t *testing.T) {
 		t.Fatal("no description in README.md")
 	}
 	hints := Hints{Layouts: mustRead(t, text)}
-	_, channels, err := Parse("quay.txt", readFile(t, filepath.Join(layoutsDir, "quay.txt")), hints)
+	_, channels, err := Parse(t.Context(), "quay.txt", readFile(t, filepath.Join(layoutsDir, "quay.txt")), hints)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -250,7 +250,7 @@ func TestLayoutReads(t *testing.T) {
 	}
 	for _, c := range cases {
 		hints := Hints{Layouts: mustRead(t, append(slices.Clone(begin), c.description...)...)}
-		_, channels, err := Parse("case", []byte(c.text), hints)
+		_, channels, err := Parse(t.Context(), "case", []byte(c.text), hints)
 		if err != nil || len(channels) != 1 {
 			t.Errorf("%s: %d channels, %v", c.name, len(channels), err)
 			continue
@@ -317,7 +317,7 @@ func TestLayoutOfColumnsWithHeaders(t *testing.T) {
 func TestLayoutPatternsThatMatchNothing(t *testing.T) {
 	layout := readFile(t, filepath.Join(layoutsDir, "quay-logger.toml"))
 	text := strings.Replace(string(readFile(t, filepath.Join(layoutsDir, "quay.txt"))), "SITE ", "SITES ", 1)
-	_, channels, err := Parse("quay.txt", []byte(text), Hints{Layouts: mustRead(t, string(layout))})
+	_, channels, err := Parse(t.Context(), "quay.txt", []byte(text), Hints{Layouts: mustRead(t, string(layout))})
 	if err != nil {
 		t.Fatal(err)
 	}

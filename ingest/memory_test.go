@@ -23,7 +23,7 @@ func TestMemoryOfReaders(t *testing.T) {
 				filled := bytes.Join([][]byte{data[:at], fill, data[at:]}, nil)
 				for _, reader := range readers {
 					used := allocated(func() {
-						if content, _ := newContent(filled); reader.Sniff(content) != "" {
+						if content, _ := newContent(t.Context(), filled); reader.Sniff(content) != "" {
 							reader.Parse(content, Hints{Unit: "g", UnitForAll: true, StepS: 0.01, StepForAll: true})
 						}
 					})

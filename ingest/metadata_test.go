@@ -79,7 +79,7 @@ func TestMetadataRefusals(t *testing.T) {
 	if _, err := ReadMetadata(t.Context(), []string{filepath.Join(dir, "none")}); err == nil {
 		t.Error("a path that is not there: no error")
 	}
-	_, _, err := Parse("f", []byte("<FDSNStationXML/>"), Hints{})
+	_, _, err := Parse(t.Context(), "f", []byte("<FDSNStationXML/>"), Hints{})
 	if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != "StationXML, not used: only files named *.xml are, alone or in archives named as such, and those of --metadata" {
 		t.Errorf("StationXML as a record: %v", err)
 	}
@@ -126,7 +126,7 @@ func TestStationMetadataWithDoubts(t *testing.T) {
 	if !strings.HasSuffix(notes, "channel XX.TARN.00.HNE: no latitude or no longitude: left out") {
 		t.Errorf("notes %q", notes)
 	}
-	if _, channels, err := Parse("f", mseedFixtures()["three-channels.mseed"], Hints{Metadata: m}); len(channels) != 2 || err == nil {
+	if _, channels, err := Parse(t.Context(), "f", mseedFixtures()["three-channels.mseed"], Hints{Metadata: m}); len(channels) != 2 || err == nil {
 		t.Errorf("%d channels, %v; want two beside the one without metadata", len(channels), err)
 	}
 }

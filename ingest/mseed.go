@@ -36,7 +36,7 @@ func (miniSEED) Sniff(c *Content) string { return miniseed.Sniff(c.Data) }
 // Parse reads the channels of acceleration. Those of one instrument are cut to
 // the time that they have in common.
 func (miniSEED) Parse(content *Content, hints Hints) ([]Channel, error) {
-	file, err := miniseed.Decode(content.Data)
+	file, err := miniseed.Decode(content.ctx, content.Data)
 	if err != nil {
 		return nil, refuse(0, "", "%w", err)
 	}

@@ -54,7 +54,7 @@ func TestMiniSEEDTilted(t *testing.T) {
 		"15": false, "15.01": true, "35.26": true, "-35.26": true, "45": true, "-74.99": true, "75": false, "-75": false,
 	} {
 		hints := stationHints(t, given, "<Azimuth>90</Azimuth><Dip>"+dip+"</Dip>")
-		_, channels, err := Parse("case", append(e.Series(3), n.Series(3)...), hints)
+		_, channels, err := Parse(t.Context(), "case", append(e.Series(3), n.Series(3)...), hints)
 		want := "case: XX.TARN.00.HNE: a dip of " + dip + words
 		switch {
 		case !refused && (err != nil || len(channels) != 2):
@@ -62,7 +62,7 @@ func TestMiniSEEDTilted(t *testing.T) {
 		case refused && (err == nil || err.Error() != want || len(channels) != 1 || channels[0].ChannelCode != "HNN"):
 			t.Errorf("dip %s: %d channels,\n%v, want\n%s", dip, len(channels), err, want)
 		}
-		if _, channels, err = Parse("case", e.Series(3), hints); refused && (err == nil || err.Error() != want || len(channels) > 0) {
+		if _, channels, err = Parse(t.Context(), "case", e.Series(3), hints); refused && (err == nil || err.Error() != want || len(channels) > 0) {
 			t.Errorf("dip %s alone: %d channels, %v", dip, len(channels), err)
 		}
 	}
@@ -78,12 +78,12 @@ func TestMiniSEEDTriaxialCodes(t *testing.T) {
 		r := mseedRecord("HN"+letter, 0, 9000)
 		for _, by := range []string{"<Azimuth>120</Azimuth>", ""} {
 			hints := stationHints(t, given, by, `code="HNE"`, `code="HN`+letter+`"`)
-			if _, channels, err := Parse("case", r.Series(3), hints); err == nil || err.Error() != want || len(channels) > 0 {
+			if _, channels, err := Parse(t.Context(), "case", r.Series(3), hints); err == nil || err.Error() != want || len(channels) > 0 {
 				t.Errorf("%s, %q: %d channels, %v, want %s", letter, by, len(channels), err, want)
 			}
 		}
 		r.Encoding = encodedFloat32
-		if _, _, err := Parse("case", r.Series(3), Hints{Unit: "gal"}); err == nil || err.Error() != want {
+		if _, _, err := Parse(t.Context(), "case", r.Series(3), Hints{Unit: "gal"}); err == nil || err.Error() != want {
 			t.Errorf("%s, without metadata: %v, want %s", letter, err, want)
 		}
 	}

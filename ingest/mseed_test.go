@@ -53,7 +53,7 @@ func writeFile(t testing.TB, path, text string) {
 
 func parseMiniSEED(t *testing.T, data []byte, hints Hints) []Channel {
 	t.Helper()
-	format, channels, err := Parse("f.mseed", data, hints)
+	format, channels, err := Parse(t.Context(), "f.mseed", data, hints)
 	if err != nil || format != "miniseed" {
 		t.Fatalf("Parse = %q, %d channels, %v", format, len(channels), err)
 	}
@@ -304,7 +304,7 @@ func TestMiniSEEDRefusals(t *testing.T) {
 	}
 	for _, k := range cases {
 		t.Run(k.name, func(t *testing.T) {
-			_, channels, err := Parse("f.mseed", k.data, k.hints)
+			_, channels, err := Parse(t.Context(), "f.mseed", k.data, k.hints)
 			if _, ok := errors.AsType[*ParseError](err); !ok || err.Error() != k.want || len(channels) > 0 {
 				t.Errorf("%d channels, error %v, want %q", len(channels), err, k.want)
 			}
@@ -326,13 +326,13 @@ func TestMiniSEEDOneBadChannel(t *testing.T) {
 			"f.mseed: XX.TARN.00.HNE: record at byte 512: damaged frames: they lead to the last sample 35241, which is said to be 35240"},
 		"dead": {append(dead.Series(2), north...), "f.mseed: samples: channel HNE: all 600 values are equal: a dead channel"},
 	} {
-		_, channels, err := Parse("f.mseed", k.data, mseedHints(t))
+		_, channels, err := Parse(t.Context(), "f.mseed", k.data, mseedHints(t))
 		var refused ChannelErrors
 		if !errors.As(err, &refused) || len(refused) != 1 || err.Error() != k.want || len(channels) != 1 || channels[0].ChannelCode != "HNN" {
 			t.Errorf("%s: %d channels, error %v, want %q", name, len(channels), err, k.want)
 		}
 	}
-	_, channels, err := Parse("f.mseed", mseedFixtures()["three-channels.mseed"], Hints{})
+	_, channels, err := Parse(t.Context(), "f.mseed", mseedFixtures()["three-channels.mseed"], Hints{})
 	if refused, ok := errors.AsType[ChannelErrors](err); !ok || len(refused) != 3 || len(channels) > 0 {
 		t.Errorf("without metadata: %d channels, %v, want three refusals", len(channels), err)
 	}
@@ -351,7 +351,7 @@ func TestMiniSEEDNotMotion(t *testing.T) {
 		"unit of displacement": {mseedRecord("HNE", 0, 9000).Series(2), stationHints(t, "m/s**2", "nm"), "XX.TARN.00.HNE: its sensitivity is for nm, not an acceleration"},
 		"messages":             {log.Series(2), Hints{}, `XX.TARN.00.LOG: instrument code "O" is not that of an accelerometer`},
 	} {
-		_, _, err := Parse("f", k.data, k.hints)
+		_, _, err := Parse(t.Context(), "f", k.data, k.hints)
 		if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != k.want {
 			t.Errorf("%s: %v, want %q", name, err, k.want)
 		}

@@ -11,7 +11,7 @@ import (
 func readNZFixture(t *testing.T, name string) []Channel {
 	t.Helper()
 	path := filepath.Join(recordsDir("new-zealand"), name)
-	format, channels, err := Parse(path, readFile(t, path), Hints{})
+	format, channels, err := Parse(t.Context(), path, readFile(t, path), Hints{})
 	if err != nil || format != "new-zealand" {
 		t.Fatalf("Parse(%s) = %s, %v", path, format, err)
 	}
@@ -259,7 +259,7 @@ func TestNZSniff(t *testing.T) {
 		"Corrected accelerogram\nUncorrected Accelerogram Data": false, "Corrected accelerogram": false,
 		"Corrected acceleration\nSite ABCD": false, "Site ABCD\nCorrected accelerogram": false, "Corrected accelerogram\nSites": false,
 	} {
-		content, _ := newContent([]byte(head + "\n"))
+		content, _ := newContent(t.Context(), []byte(head+"\n"))
 		if got := (newZealand{}).Sniff(content); (got != "") != want {
 			t.Errorf("Sniff(%q) = %q, want accepted %v", head, got, want)
 		}

@@ -241,7 +241,7 @@ func TestOutcomes(t *testing.T) {
 // unless it is empty.
 func outcome(t *testing.T, format string, data []byte, hints Hints) string {
 	t.Helper()
-	got, channels, err := Parse("f", data, hints)
+	got, channels, err := Parse(t.Context(), "f", data, hints)
 	if got != format && len(data) > 0 {
 		t.Errorf("taken for %q, want %q", got, format)
 	}

@@ -15,7 +15,7 @@ import (
 const benchSamples = 20000
 
 // benchFiles are long files of every format, by the format's name.
-func benchFiles(b *testing.B) map[string][]byte {
+func benchFiles() map[string][]byte {
 	const n = benchSamples
 	v2, cosmos, at2, counts, smc := v2Bridge, cosmosBase, at2North, knetNS, smcNorth
 	v2.n, v2.x = n, ring(n, 25, 1.99, 0.999)
@@ -61,7 +61,7 @@ func benchMiniSEED() []byte {
 func BenchmarkParse(b *testing.B) {
 	hints := mseedHints(b)
 	hints.Layouts = exampleLayouts(b)
-	files := benchFiles(b)
+	files := benchFiles()
 	for _, info := range Formats(hints.Layouts) {
 		data := files[info.Name]
 		b.Run(info.Name, func(b *testing.B) {
@@ -72,7 +72,7 @@ func BenchmarkParse(b *testing.B) {
 			b.ReportAllocs()
 			samples := 0
 			for b.Loop() {
-				format, channels, err := Parse("f", data, hints)
+				format, channels, err := Parse(b.Context(), "f", data, hints)
 				if err != nil || format != info.Name {
 					b.Fatal(format, err)
 				}
@@ -89,7 +89,7 @@ func BenchmarkParse(b *testing.B) {
 // those of the files in it.
 func BenchmarkParseArchive(b *testing.B) {
 	const n = 8
-	data := benchFiles(b)["at2"]
+	data := benchFiles()["at2"]
 	tarred := archivetest.Tar(timesOver(n, data)...)
 	for _, c := range []struct {
 		name    string
@@ -107,7 +107,7 @@ func BenchmarkParseArchive(b *testing.B) {
 				members := 0
 				for m, err := range archive.Members(b.Context(), bytes.NewReader(c.content), int64(len(c.content)), c.name, options) {
 					if err == nil {
-						_, _, err = Parse(m.Name, m.Data, Hints{})
+						_, _, err = Parse(b.Context(), m.Name, m.Data, Hints{})
 					}
 					if err != nil {
 						b.Fatal(err)

@@ -48,7 +48,7 @@ func TestPlainEncodings(t *testing.T) {
 		"d exponents":        strings.Join(append(slices.Clone(lines[:3]), suffixed(lines[3:], "d0")...), "\n"),
 		"Unicode minus":      strings.ReplaceAll(text, "\n-", "\n\u2212"),
 	} {
-		format, channels, err := Parse("f", []byte(data), Hints{})
+		format, channels, err := Parse(t.Context(), "f", []byte(data), Hints{})
 		if err != nil || format != "plain" || len(channels) != 1 {
 			t.Errorf("%s: %q, %d channels, %v", name, format, len(channels), err)
 			continue

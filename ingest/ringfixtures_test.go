@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"context"
 	"flag"
 	"fmt"
 	"math"
@@ -159,7 +160,7 @@ func fixtureLines(t testing.TB, format, name string) []string {
 }
 
 func parseLines(lines []string, hints Hints) (string, []Channel, error) {
-	return Parse("case", []byte(strings.Join(lines, "\n")+"\n"), hints)
+	return Parse(context.Background(), "case", []byte(strings.Join(lines, "\n")+"\n"), hints)
 }
 
 // equalSeries reports whether both hold the same bits.

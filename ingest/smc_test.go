@@ -292,7 +292,7 @@ func TestSMCNotMotion(t *testing.T) {
 		"velocity.smc": "velocity series, not acceleration",
 		"spectra.smc":  "response spectra, not a time series",
 	} {
-		format, _, err := Parse("f", readFile(t, filepath.Join(recordsDir("smc"), name)), Hints{})
+		format, _, err := Parse(t.Context(), "f", readFile(t, filepath.Join(recordsDir("smc"), name)), Hints{})
 		if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != want || format != "smc" {
 			t.Errorf("%s: Parse = %s, %v, want a NotMotionError %q", name, format, err, want)
 		}
@@ -336,7 +336,7 @@ func TestSMCSniff(t *testing.T) {
 		"no tables":               {base[:11], false},
 		"prose after the figures": {edit(t, base, 1, "2 CORRECTED ACCELEROGRAM", "2 corrections"), false},
 	} {
-		content, _ := newContent([]byte(strings.Join(k.lines, "\n")))
+		content, _ := newContent(t.Context(), []byte(strings.Join(k.lines, "\n")))
 		if got := (smc{}).Sniff(content); (got != "") != k.want {
 			t.Errorf("%s: Sniff = %q, want accepted %v", name, got, k.want)
 		}

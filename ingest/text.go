@@ -18,12 +18,33 @@ const MaxLine = 1 << 20
 type Text struct {
 	lines    [][]byte
 	endsLine bool // a line end follows the last line
+	stopped  func() error
+}
+
+// linesBetweenLooks is after how many lines a text looks whether somebody stopped the
+// run: few, since lines may be long, and enough that it costs nothing.
+const linesBetweenLooks = 32
+
+// interrupted is the panic that ends a reader at whatever line it is, so that none has to
+// ask. Parse recovers it.
+type interrupted struct{ err error }
+
+func (t *Text) look() {
+	if t.stopped == nil {
+		return
+	}
+	if err := t.stopped(); err != nil {
+		panic(interrupted{err})
+	}
 }
 
 // NewText splits data into lines at LF, CRLF or a lone CR. UTF-16 with a byte
 // order mark is converted. It refuses an empty file, binary content and lines
 // longer than MaxLine, each with its own cause. The lines alias data.
-func NewText(data []byte) (*Text, error) {
+func NewText(data []byte) (*Text, error) { return newText(data, nil) }
+
+// newText is NewText, and what reads the lines, it too, ends where stopped gives an error.
+func newText(data []byte, stopped func() error) (*Text, error) {
 	if len(data) == 0 {
 		return nil, refuse(0, "", "file is empty")
 	}
@@ -44,7 +65,8 @@ func NewText(data []byte) (*Text, error) {
 		}
 		return nil, err
 	}
-	t := &Text{lines: splitLines(data), endsLine: len(data) > 0 && (data[len(data)-1] == '\n' || data[len(data)-1] == '\r')}
+	t := &Text{stopped: stopped, endsLine: len(data) > 0 && (data[len(data)-1] == '\n' || data[len(data)-1] == '\r')}
+	t.lines = splitLines(data, t.look)
 	for i, l := range t.lines {
 		if len(l) > MaxLine {
 			return nil, refuse(i+1, "", "line of %d bytes is longer than the limit of %d", len(l), MaxLine)
@@ -65,6 +87,9 @@ func (t *Text) Line(n int) string { return string(t.Bytes(n)) }
 // Bytes returns line n, counted from 1; nil past the end. The caller must not
 // change it.
 func (t *Text) Bytes(n int) []byte {
+	if n%linesBetweenLooks == 0 {
+		t.look()
+	}
 	if n < 1 || n > len(t.lines) {
 		return nil
 	}
@@ -138,14 +163,17 @@ func refuseBinary(data []byte) error {
 		return refuse(0, "", "file is binary, not a text record")
 	}
 	if i := bytes.IndexByte(data, 0); i >= 0 {
-		return refuse(len(splitLines(data[:i+1])), "", "NUL byte in the text: the file is damaged")
+		return refuse(len(splitLines(data[:i+1], func() {})), "", "NUL byte in the text: the file is damaged")
 	}
 	return nil
 }
 
+// linesBetweenSplits is after how many lines splitLines calls look, some 0.5 ms.
+const linesBetweenSplits = 1 << 14
+
 // splitLines ends a line at LF, CRLF or a lone CR. The text's last line may do
-// without.
-func splitLines(data []byte) [][]byte {
+// without. It calls look now and then.
+func splitLines(data []byte, look func()) [][]byte {
 	lines := make([][]byte, 0, bytes.Count(data, []byte("\n"))+1)
 	returns := bytes.Count(data, []byte("\r"))
 	for rest := data; len(rest) > 0; {
@@ -159,7 +187,9 @@ func splitLines(data []byte) [][]byte {
 			line = line[:end]
 			returns--
 		}
-		lines = append(lines, line)
+		if lines = append(lines, line); len(lines)%linesBetweenSplits == 0 {
+			look()
+		}
 	}
 	if returns > 0 {
 		return splitAtReturns(lines, returns)

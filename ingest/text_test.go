@@ -23,8 +23,8 @@ func TestSplitLines(t *testing.T) {
 		if want[len(want)-1] == "" {
 			want = want[:len(want)-1]
 		}
-		got := string(bytes.Join(splitLines(data), []byte("\n")))
-		if n := len(splitLines(data)); n != len(want) || got != strings.Join(want, "\n") {
+		got := string(bytes.Join(splitLines(data, func() {}), []byte("\n")))
+		if n := len(splitLines(data, func() {})); n != len(want) || got != strings.Join(want, "\n") {
 			t.Fatalf("seed %d: splitLines(%q) = %d lines %q, want %d lines %q", seed, data, n, got, len(want), want)
 		}
 	}

@@ -67,7 +67,7 @@ func v1Head(t testing.TB) []string {
 
 func TestV1(t *testing.T) {
 	data := readFile(t, recordsDir("californiav1")+"/two-channels.v1")
-	format, channels, err := Parse("f", data, Hints{})
+	format, channels, err := Parse(t.Context(), "f", data, Hints{})
 	if err != nil || format != "california-v1" || len(channels) != 2 {
 		t.Fatalf("Parse = %s, %d channels, %v", format, len(channels), err)
 	}

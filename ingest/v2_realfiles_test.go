@@ -68,7 +68,7 @@ func TestRealV2(t *testing.T) {
 		name, _, _ := strings.Cut(filepath.Base(filepath.Dir(path)), "_")
 		want := folders[name]
 		data := readFile(t, path)
-		format, channels, err := Parse(path, data, Hints{})
+		format, channels, err := Parse(t.Context(), path, data, Hints{})
 		if err != nil || format != "california-v2" || len(channels) != 1 {
 			t.Errorf("Parse(%s) = %s, %d channels, %v", path, format, len(channels), err)
 			continue
@@ -125,7 +125,7 @@ func TestRealV2Descriptions(t *testing.T) {
 	dir := realFolder(t)
 	read := func(parts ...string) Channel {
 		path := filepath.Join(append([]string{dir}, parts...)...)
-		_, channels, err := Parse(path, readFile(t, path), Hints{})
+		_, channels, err := Parse(t.Context(), path, readFile(t, path), Hints{})
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -168,13 +168,13 @@ func TestRealV2Together(t *testing.T) {
 		var want []Channel
 		for _, path := range paths {
 			data := readFile(t, path)
-			_, channels, err := Parse(path, data, Hints{})
+			_, channels, err := Parse(t.Context(), path, data, Hints{})
 			if err != nil {
 				t.Fatal(err)
 			}
 			together, want = append(together, data...), append(want, channels...)
 		}
-		format, got, err := Parse(dir, together, Hints{})
+		format, got, err := Parse(t.Context(), dir, together, Hints{})
 		if err != nil || format != "california-v2" || len(got) != len(want) {
 			t.Errorf("%s: Parse = %s, %d channels, %v, want %d", dir, format, len(got), err, len(want))
 			continue
@@ -194,7 +194,7 @@ func TestRealV2Together(t *testing.T) {
 func TestRealV1Text(t *testing.T) {
 	for _, path := range realFiles(t, ".V2") {
 		data := readFile(t, path)
-		_, channels, err := Parse(path, data, Hints{})
+		_, channels, err := Parse(t.Context(), path, data, Hints{})
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -202,7 +202,7 @@ func TestRealV1Text(t *testing.T) {
 		lines := bytes.Split(data, []byte("\n"))
 		block := lines[45 : 46+(len(want.Acceleration)+7)/8]
 		text := append(slices.Clone(lines[1:14]), block...)
-		format, channels, err := Parse(path, bytes.Join(text, []byte("\n")), Hints{})
+		format, channels, err := Parse(t.Context(), path, bytes.Join(text, []byte("\n")), Hints{})
 		if err != nil || format != "california-v1" || len(channels) != 1 {
 			t.Errorf("%s: Parse = %s, %d channels, %v", path, format, len(channels), err)
 			continue
@@ -227,7 +227,7 @@ func TestRealV1Text(t *testing.T) {
 
 func TestRealV3IsSkipped(t *testing.T) {
 	for _, path := range realFiles(t, ".V3") {
-		format, _, err := Parse(path, readFile(t, path), Hints{})
+		format, _, err := Parse(t.Context(), path, readFile(t, path), Hints{})
 		if not, ok := errors.AsType[*NotMotionError](err); !ok || format != "california-v2" || !strings.Contains(not.Reason, "spectra") {
 			t.Errorf("Parse(%s) = %s, %v, want a NotMotionError", path, format, err)
 		}
@@ -239,7 +239,7 @@ func BenchmarkRealV2(b *testing.B) {
 	b.SetBytes(int64(len(data)))
 	b.ReportAllocs()
 	for b.Loop() {
-		if _, _, err := Parse("", data, Hints{}); err != nil {
+		if _, _, err := Parse(b.Context(), "", data, Hints{}); err != nil {
 			b.Fatal(err)
 		}
 	}

@@ -13,7 +13,7 @@ import (
 func readV2Fixture(t *testing.T, name string) []Channel {
 	t.Helper()
 	path := filepath.Join(recordsDir("californiav2"), name)
-	format, channels, err := Parse(path, readFile(t, path), Hints{})
+	format, channels, err := Parse(t.Context(), path, readFile(t, path), Hints{})
 	if err != nil || format != "california-v2" {
 		t.Fatalf("Parse(%s) = %s, %v", path, format, err)
 	}
@@ -284,7 +284,7 @@ func wantDamaged(t *testing.T, format string, want map[string]string) {
 		}
 		seen++
 		path := filepath.Join(recordsDir(format), e.Name())
-		if _, _, err := Parse("f", readFile(t, path), Hints{}); err == nil || err.Error() != "f:"+want[e.Name()] {
+		if _, _, err := Parse(t.Context(), "f", readFile(t, path), Hints{}); err == nil || err.Error() != "f:"+want[e.Name()] {
 			t.Errorf("Parse(%s) = %v, want %s", path, err, want[e.Name()])
 		}
 	}
@@ -294,7 +294,7 @@ func wantDamaged(t *testing.T, format string, want map[string]string) {
 }
 
 func TestV2SpectraAreNotMotion(t *testing.T) {
-	_, _, err := Parse("f", readFile(t, filepath.Join(recordsDir("californiav2"), "spectra.v3")), Hints{})
+	_, _, err := Parse(t.Context(), "f", readFile(t, filepath.Join(recordsDir("californiav2"), "spectra.v3")), Hints{})
 	if not, ok := errors.AsType[*NotMotionError](err); !ok || not.Reason != "response and Fourier spectra, not a time series" {
 		t.Errorf("Parse = %v, want a NotMotionError", err)
 	}

@@ -52,7 +52,7 @@ func compareWithNetwork(t *testing.T, file string) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	_, channels, err := ingest.Parse(name, data, ingest.Hints{})
+	_, channels, err := ingest.Parse(t.Context(), name, data, ingest.Hints{})
 	if err != nil || len(channels) != 1 {
 		t.Fatalf("%d channels, %v", len(channels), err)
 	}

@@ -89,7 +89,7 @@ func (r *reader) process(ctx context.Context, file item) (result, error) {
 	if held {
 		return res.held(first), ctx.Err()
 	}
-	return r.parse(file.Found, data, res), ctx.Err()
+	return r.parse(ctx, file.Found, data, res), ctx.Err()
 }
 
 // read loads the file, unless it was read out of an archive, and completes the
@@ -113,13 +113,14 @@ func (r *reader) read(file item, res *result) ([]byte, error) {
 	return data, nil
 }
 
-// parse reads the channels, applies the catalogue, and solves each channel.
-func (r *reader) parse(file ingest.Found, data []byte, res result) result {
+// parse reads the channels, applies the catalogue, and solves each channel. A result
+// after the end of the context is none.
+func (r *reader) parse(ctx context.Context, file ingest.Found, data []byte, res result) result {
 	hints := r.hints
 	if r.catalogue != nil {
 		hints = r.catalogue.Hints(file.Rel, hints)
 	}
-	format, channels, err := ingest.Parse(file.Path, data, hints)
+	format, channels, err := ingest.Parse(ctx, file.Path, data, hints)
 	res.source.Format = format
 	if skip, ok := errors.AsType[*ingest.NotMotionError](err); ok {
 		return res.skipped(skip.Reason)
@@ -130,6 +131,9 @@ func (r *reader) parse(file ingest.Found, data []byte, res result) result {
 	}
 	res.outcome, res.refused = Stored, refused
 	for i := range channels {
+		if ctx.Err() != nil {
+			return res
+		}
 		s := r.tell(file, format, res.stem, &channels[i])
 		if err := r.solve(&s, channels[i]); err != nil {
 			res.refused = append(res.refused, &ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})

@@ -117,7 +117,7 @@ func at2Samples(t *testing.T, dir, name string) []float64 {
 	if err != nil {
 		t.Fatal(err)
 	}
-	_, channels, err := ingest.Parse(name, data, ingest.Hints{})
+	_, channels, err := ingest.Parse(t.Context(), name, data, ingest.Hints{})
 	if err != nil {
 		t.Fatal(err)
 	}

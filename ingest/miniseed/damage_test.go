@@ -81,7 +81,7 @@ func TestDamage(t *testing.T) {
 	}
 	for _, k := range cases {
 		t.Run(k.name, func(t *testing.T) {
-			f, err := Decode(k.data)
+			f, err := Decode(t.Context(), k.data)
 			if k.file != "" {
 				if e := new(Error); err == nil || err.Error() != k.file || !errors.As(err, &e) {
 					t.Fatalf("error %v, want %q", err, k.file)
@@ -97,7 +97,7 @@ func TestDamage(t *testing.T) {
 			}
 			other := invented(Steim1, x)
 			other.Channel = "HNZ"
-			f, err = Decode(append(bytes.Clone(k.data), other.One(3)...))
+			f, err = Decode(t.Context(), append(bytes.Clone(k.data), other.One(3)...))
 			if err != nil || len(f.Channels) != 2 || f.Channels[0].Err == nil || f.Channels[1].Err != nil || !equal(f.Channels[1].Traces[0].Samples, x) {
 				t.Errorf("with another channel behind: %v, %v", f, err)
 			}
@@ -166,7 +166,7 @@ func FuzzDecode(f *testing.F) {
 func decodeBounded(t *testing.T, data []byte) {
 	var start, end runtime.MemStats
 	runtime.ReadMemStats(&start)
-	f, err := Decode(data)
+	f, err := Decode(t.Context(), data)
 	runtime.ReadMemStats(&end)
 	if used := end.TotalAlloc - start.TotalAlloc; used > 1<<16+memoryFactor*uint64(len(data)) {
 		t.Errorf("%d bytes allocated for %d bytes", used, len(data))

@@ -2,6 +2,7 @@ package miniseed
 
 import (
 	"cmp"
+	"context"
 	"fmt"
 	"math"
 	"slices"
@@ -115,9 +116,10 @@ func (e *Error) Unwrap() error { return e.Err }
 //
 // Whatever keeps the next record from being found, a header that is none, a cut
 // record, a loop of blockettes, a wrong checksum, is an *Error about the whole.
-// What is wrong with samples or times of one channel is that channel's Err.
-func Decode(data []byte) (*File, error) {
-	s := scanner{data: data, plain: map[[12]byte]int32{}, source: map[string]int32{}, ids: map[ID]int32{}}
+// What is wrong with samples or times of one channel is that channel's Err. An error
+// may be the context's, too.
+func Decode(ctx context.Context, data []byte) (*File, error) {
+	s := scanner{ctx: ctx, data: data, plain: map[[12]byte]int32{}, source: map[string]int32{}, ids: map[ID]int32{}}
 	if err := s.scan(); err != nil {
 		return nil, err
 	}
@@ -132,7 +134,10 @@ func Decode(data []byte) (*File, error) {
 		}
 		c := &f.Channels[s.records[first].channel]
 		if c.Err == nil {
-			c.Traces, c.Err = traces(s.records[first:next])
+			c.Traces, c.Err = traces(ctx, s.records[first:next])
+		}
+		if err := ctx.Err(); err != nil {
+			return nil, err
 		}
 		first = next
 	}

@@ -39,7 +39,7 @@ func walk(n int, largest float64, seed uint64) []float64 {
 // one decodes what must be one channel.
 func one(t *testing.T, data []byte) Channel {
 	t.Helper()
-	f, err := Decode(data)
+	f, err := Decode(t.Context(), data)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -137,7 +137,7 @@ func TestRecordsInAnyOrder(t *testing.T) {
 	for _, p := range pieces {
 		data = append(data, p...)
 	}
-	f, err := Decode(data)
+	f, err := Decode(t.Context(), data)
 	if err != nil || len(f.Channels) != 3 {
 		t.Fatalf("seed %d: %d channels, %v", seed, len(f.Channels), err)
 	}
@@ -329,7 +329,7 @@ func TestIdentifiers(t *testing.T) {
 	blank, dashes := r.One(2), r.One(2)
 	copy(dashes[13:], "--")
 	v3 := r.One(3)
-	f, err := Decode(append(append(blank, dashes...), v3...))
+	f, err := Decode(t.Context(), append(append(blank, dashes...), v3...))
 	if err != nil || len(f.Channels) != 1 || f.Channels[0].ID != (ID{"XX", "CULM", "", "HNE"}) || f.Channels[0].Traces[0].Repeated != 24 {
 		t.Errorf("channels %+v, %v, want one of three records alike", f.Channels, err)
 	}
@@ -345,7 +345,7 @@ func TestRecordsWithoutSamples(t *testing.T) {
 	empty := invented(Steim2, []float64{1}).One(2)
 	empty[31] = 0
 	data := append(append(log, empty...), invented(Int32, walk(12, 100, 1)).One(2)...)
-	f, err := Decode(append(data, "end"...))
+	f, err := Decode(t.Context(), append(data, "end"...))
 	if err != nil || f.Skipped != 2 || f.Trailing != 3 || len(f.Channels[0].Traces) != 1 {
 		t.Errorf("%+v, %v", f, err)
 	}
@@ -356,7 +356,7 @@ func TestAllocations(t *testing.T) {
 	few, many := invented(Steim2, walk(2000, 3000, 1)).Series(2), invented(Steim2, walk(200_000, 3000, 1)).Series(2)
 	count := func(data []byte) float64 {
 		return testing.AllocsPerRun(5, func() {
-			if _, err := Decode(data); err != nil {
+			if _, err := Decode(t.Context(), data); err != nil {
 				t.Fatal(err)
 			}
 		})

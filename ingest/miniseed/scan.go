@@ -2,6 +2,7 @@ package miniseed
 
 import (
 	"bytes"
+	"context"
 	"errors"
 	"fmt"
 	"math"
@@ -33,6 +34,7 @@ var firstNS, lastNS = time.Date(firstYear, 1, 1, 0, 0, 0, 0, time.UTC).UnixNano(
 
 // scanner lists the records of a file.
 type scanner struct {
+	ctx      context.Context // that of Decode, which makes the scanner for one call
 	data     []byte
 	records  []record
 	channels []Channel
@@ -70,6 +72,9 @@ var errVolume = errors.New("full SEED: extract miniSEED and StationXML from it")
 // scan walks from record to record.
 func (s *scanner) scan() error {
 	for at := 0; at < len(s.data); {
+		if err := s.ctx.Err(); err != nil {
+			return err
+		}
 		rest := s.data[at:]
 		var n int
 		var err error

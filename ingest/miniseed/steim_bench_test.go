@@ -18,7 +18,7 @@ func BenchmarkDecode(b *testing.B) {
 				b.SetBytes(int64(8 * len(x)))
 				b.ReportAllocs()
 				for b.Loop() {
-					if f, err := Decode(data); err != nil || f.Channels[0].Err != nil {
+					if f, err := Decode(b.Context(), data); err != nil || f.Channels[0].Err != nil {
 						b.Fatal(err)
 					}
 				}

@@ -1,6 +1,7 @@
 package miniseed
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"math"
@@ -13,11 +14,11 @@ func SameRate(a, b float64) bool { return math.Abs(a-b) <= 1e-4*a }
 
 // traces joins the records of one channel, which are in the order of time. The
 // samples of a trace are allocated at once.
-func traces(records []record) ([]Trace, error) {
+func traces(ctx context.Context, records []record) ([]Trace, error) {
 	var out []Trace
 	for len(records) > 0 {
 		n := contiguous(records)
-		t, err := join(records[:n])
+		t, err := join(ctx, records[:n])
 		if err != nil {
 			return nil, err
 		}
@@ -47,8 +48,8 @@ func (r *record) lateness(end int64) float64 { return float64(r.start-end) * 1e-
 
 var errKinds = errors.New("samples change between integers and floating-point numbers")
 
-// join decodes records into one trace.
-func join(records []record) (Trace, error) {
+// join decodes records into one trace, or gives up with the context.
+func join(ctx context.Context, records []record) (Trace, error) {
 	first := &records[0]
 	t := Trace{
 		Start: time.Unix(0, first.start).UTC(), Rate: first.rate, Encoding: first.encoding, Offset: first.offset,
@@ -60,6 +61,9 @@ func join(records []record) (Trace, error) {
 	t.Samples = make([]float64, 0, total)
 	end := first.start
 	for i := range records {
+		if err := ctx.Err(); err != nil {
+			return t, err
+		}
 		r := &records[i]
 		if r.encoding.IsFloat() != first.encoding.IsFloat() {
 			return t, &Error{r.offset, errKinds}

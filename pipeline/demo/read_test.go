@@ -21,7 +21,7 @@ func read(t *testing.T, r *record, format string, allowed ...string) []ingest.Ch
 	t.Helper()
 	var all []ingest.Channel
 	for _, f := range r.station.network.encode(r) {
-		got, channels, err := ingest.Parse(f.name, f.data, ingest.Hints{})
+		got, channels, err := ingest.Parse(t.Context(), f.name, f.data, ingest.Hints{})
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -198,7 +198,7 @@ func TestDamagedFilesAreRefused(t *testing.T) {
 		"unknown-unit.csv": "unit",
 	} {
 		data := readFile(t, dir, "damaged", name)
-		if _, _, err := ingest.Parse(name, data, ingest.Hints{}); err == nil || !strings.Contains(err.Error(), want) {
+		if _, _, err := ingest.Parse(t.Context(), name, data, ingest.Hints{}); err == nil || !strings.Contains(err.Error(), want) {
 			t.Errorf("%s: %v, want an error with %q", name, err, want)
 		} else {
 			t.Log(err)
@@ -220,7 +220,7 @@ func TestCatalogueCompletesTheRecords(t *testing.T) {
 	sitings := map[ingest.Siting]int{}
 	components := map[string]int{}
 	for _, rel := range recordFiles(t, dir) {
-		_, channels, err := ingest.Parse(rel, readFile(t, dir, filepath.FromSlash(rel)), table.Hints(rel, ingest.Hints{}))
+		_, channels, err := ingest.Parse(t.Context(), rel, readFile(t, dir, filepath.FromSlash(rel)), table.Hints(rel, ingest.Hints{}))
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -258,7 +258,7 @@ func TestTextsAreNoRecords(t *testing.T) {
 	if reason := ingest.SkipByName("README.txt"); reason == "" {
 		t.Error("README.txt is taken for a record")
 	}
-	_, _, err := ingest.Parse("catalogue.csv", readFile(t, sum.Catalogue), ingest.Hints{})
+	_, _, err := ingest.Parse(t.Context(), "catalogue.csv", readFile(t, sum.Catalogue), ingest.Hints{})
 	if _, ok := errors.AsType[*ingest.NotMotionError](err); !ok {
 		t.Errorf("Parse(catalogue.csv) = %v, want a *NotMotionError", err)
 	}

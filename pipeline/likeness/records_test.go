@@ -26,7 +26,7 @@ func recordings(t *testing.T) (names []string, channels []ingest.Channel) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		_, parsed, err := ingest.Parse(file, data, ingest.Hints{})
+		_, parsed, err := ingest.Parse(t.Context(), file, data, ingest.Hints{})
 		if err != nil {
 			t.Fatal(err)
 		}
