@@ -69,6 +69,37 @@ func (t *Tx) ForgetQuake(ctx context.Context, eventID int64, publicID string) er
 	return nil
 }
 
+// PutWithdrawn stores that a QuakeML event was withdrawn, and when it was said, in place
+// of what was known of that; zero is unknown.
+func (t *Tx) PutWithdrawn(ctx context.Context, publicID string, at time.Time) error {
+	err := t.exec(ctx, `INSERT INTO withdrawn_quake (public_id, created_at) VALUES (?, ?)
+		ON CONFLICT DO UPDATE SET created_at = excluded.created_at`, publicID, timeText(at))
+	if err != nil {
+		return fmt.Errorf("withdraw QuakeML event %s: %w", publicID, err)
+	}
+	return nil
+}
+
+// Withdrawn returns the public identifiers of the QuakeML events that were withdrawn, and
+// when.
+func (t *Tx) Withdrawn(ctx context.Context) (map[string]time.Time, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT public_id, coalesce(created_at, '') FROM withdrawn_quake`)
+	if err != nil {
+		return nil, fmt.Errorf("read withdrawn events: %w", err)
+	}
+	found, err := collect(rows, func(v *[2]string) []any { return []any{&v[0], &v[1]} })
+	if err != nil {
+		return nil, fmt.Errorf("read withdrawn events: %w", err)
+	}
+	out := make(map[string]time.Time, len(found))
+	for _, v := range found {
+		if out[v[0]], err = parseTime(v[1]); err != nil {
+			return nil, err
+		}
+	}
+	return out, nil
+}
+
 // IsTimed reports whether anybody says when the record's earthquake was.
 func (t *Tx) IsTimed(ctx context.Context, recordID int64) (timed bool, err error) {
 	err = t.tx.QueryRowContext(ctx, `SELECT count(*) > 0 FROM record r JOIN event e ON e.id = r.event_id

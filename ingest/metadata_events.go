@@ -3,6 +3,7 @@ package ingest
 import (
 	"cmp"
 	"fmt"
+	"maps"
 	"slices"
 	"strconv"
 	"strings"
@@ -139,6 +140,22 @@ func (m *Metadata) Withdraws(publicID string, created time.Time) bool {
 	m.ordering.Lock()
 	defer m.ordering.Unlock()
 	return m.quakes.withdraws(publicID, created)
+}
+
+// Withdrawn returns the public identifiers of the events that were withdrawn, and when it
+// was said last, zero where that is not known.
+func (m *Metadata) Withdrawn() map[string]time.Time {
+	m.ordering.Lock()
+	defer m.ordering.Unlock()
+	return maps.Clone(m.quakes.withdrawn)
+}
+
+// Withdraw notes that an event was withdrawn, as documents of a former run said.
+func (m *Metadata) Withdraw(publicID string, at time.Time) {
+	m.ordering.Lock()
+	defer m.ordering.Unlock()
+	m.quakes.withdraw(publicID, at)
+	m.quakes.ordered = nil
 }
 
 // catalogueEvent returns the event as it is used, and what is doubtful of it: it is

@@ -104,10 +104,10 @@ func TestWithdrawnEvents(t *testing.T) {
 		kind              string
 		stands            bool
 	}{
-		{5, 6, "not existing", false}, {5, 6, "not reported", false}, {5, 6, "not locatable", false},
-		{5, 5, "not existing", false}, {6, 5, "not existing", true}, {6, 5, "not reported", true},
+		{5, 6, "not existing", false}, {5, 6, "not locatable", false},
+		{5, 5, "not existing", false}, {6, 5, "not existing", true}, {6, 5, "not locatable", true},
 		{0, 5, "not existing", false}, {5, 0, "not existing", false}, {0, 0, "not existing", false},
-		{5, 6, "earthquake", true},
+		{5, 6, "earthquake", true}, {5, 6, "not reported", true},
 	} {
 		said := quakeML([4]string{` publicID="a"`, "2041-03-04T08:12:00Z", "41", made(tt.event)}, [4]string{` publicID="b"`, "2041-03-04T08:13:00Z", "41", ""})
 		withdrawal := quakeML([4]string{` publicID="a"`, "2041-03-04T08:12:00Z", "41", made(tt.withdrawal) + "<type>" + tt.kind + "</type>"})

@@ -149,11 +149,38 @@ func (s *settler) quake(ctx context.Context, id int64) error {
 	return s.stateQuake(ctx, subject, own, chosen(held, &as))
 }
 
+// shareWithdrawn tells the documents at hand of the QuakeML events that those of former
+// runs withdrew, and the store of those that they withdraw.
+func shareWithdrawn(ctx context.Context, tx *db.Tx, m *ingest.Metadata) error {
+	held, err := tx.Withdrawn(ctx)
+	if err != nil {
+		return err
+	}
+	for id, at := range held {
+		m.Withdraw(id, at)
+	}
+	for id, at := range m.Withdrawn() {
+		if before, ok := held[id]; ok && before.Equal(at) {
+			continue
+		}
+		if err := tx.PutWithdrawn(ctx, id, at); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
 // renewQuakes brings what may be the event up to the versions of the documents at hand,
-// and forgets what moved away from it.
+// and forgets what was withdrawn or moved away from it.
 func (s *settler) renewQuakes(ctx context.Context, id int64, held []db.Quake, as *statedEvent) ([]db.Quake, error) {
 	var out []db.Quake
 	for _, h := range held {
+		if s.metadata.Withdraws(h.PublicID, h.Created) {
+			if err := s.tx.ForgetQuake(ctx, id, h.PublicID); err != nil {
+				return nil, err
+			}
+			continue
+		}
 		e, ok := s.metadata.Event(h.PublicID)
 		if !ok {
 			out = append(out, h)

@@ -304,6 +304,9 @@ func TestVersionsOfOneQuakeML(t *testing.T) {
 	early, revised := version("2041-03-04T00:00:00Z", at, 38.01, 7.1), version("2041-03-05T00:00:00Z", at, 38.02, 7.3)
 	moved := version("2041-03-05T00:00:00Z", later, 38.02, 7.3)
 	undated, undatedRevised, undatedMoved := version("", at, 38.01, 7.1), version("", at, 38.02, 7.3), version("", later, 38.02, 7.3)
+	withdrawn := func(created string) string {
+		return strings.Replace(version(created, at, 38.01, 7.1), "</event>", "<type>not existing</type></event>", 1)
+	}
 	const isEarly, isRevised, none = "Moor 38.01 M7.1, 1 held", "Moor 38.02 M7.3, 1 held", " 38 M7.2, 0 held"
 	for _, test := range []struct {
 		name, first, second string
@@ -318,6 +321,11 @@ func TestVersionsOfOneQuakeML(t *testing.T) {
 		{"moved away, read first", moved, early, none},
 		{"moved away, undated", undated, undatedMoved, none},
 		{"moved to it, undated", undatedMoved, undated, isEarly},
+		{"withdrawn", early, withdrawn("2041-03-05T00:00:00Z"), none},
+		{"withdrawn, read first", withdrawn("2041-03-05T00:00:00Z"), early, none},
+		{"withdrawn, undated", undated, withdrawn(""), none},
+		{"withdrawn before", revised, withdrawn("2041-03-04T00:00:00Z"), isRevised},
+		{"withdrawn before, read first", withdrawn("2041-03-04T00:00:00Z"), revised, isRevised},
 	} {
 		for _, runs := range []string{"1.xml 2.xml", "1.xml|2.xml", "1.xml|2.xml|2.xml"} {
 			if test.name == "moved away, read first" && runs != "1.xml 2.xml" {

@@ -139,6 +139,9 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 		if s.generation, err = settleGeneration(ctx, tx, opts.Grid, opts.Recipe); err != nil {
 			return err
 		}
+		if err = shareWithdrawn(ctx, tx, opts.Hints.Metadata); err != nil {
+			return err
+		}
 		s.id, err = tx.StartRun(ctx, "ingest", opts.Program, opts.Started)
 		return err
 	})

@@ -37,7 +37,7 @@ type Event struct {
 // They are how an event that was published before is withdrawn.
 //
 // Source: QuakeML 1.2, EventType (from memory; "not locatable" is of version 1.1).
-var noEvents = []string{"not existing", "not reported", "not locatable"}
+var noEvents = []string{"not existing", "not locatable"}
 
 // The elements of QuakeML that are read.
 type (

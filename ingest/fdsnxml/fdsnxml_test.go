@@ -357,7 +357,6 @@ func TestLeftOut(t *testing.T) {
 		{"longitude", []string{"<value>2</value>", "<value>362</value>"}, third + "longitude 362 is outside -180 to 180: left out"},
 		{"magnitude", []string{">4.3<", ">big<"}, second + `value: expected a number, found "big": left out`},
 		{"none", []string{"quarry blast", "not existing"}, third + `its type is "not existing": left out`},
-		{"unsaid", []string{"quarry blast", "not reported"}, third + `its type is "not reported": left out`},
 		{"nowhere", []string{"quarry blast", "not locatable"}, third + `its type is "not locatable": left out`},
 	} {
 		events, left, err := ReadEvents(t.Context(), damaged(t, "events.xml", k.replace...))
