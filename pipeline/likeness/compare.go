@@ -109,6 +109,9 @@ func (c *Comparer) compare(a, b *Motion, l *limits) Verdict {
 		a, b = b, a
 	}
 	ratio, stepS, reason := steps(a, b)
+	if reason == "" && len(a.samples)+len(b.samples) > longest/ratio {
+		reason = "too long to compare"
+	}
 	if reason != "" {
 		return Verdict{Reason: reason}
 	}

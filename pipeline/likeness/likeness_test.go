@@ -266,7 +266,8 @@ func TestDifferentAndWhy(t *testing.T) {
 	for i := range sine {
 		sine[i] = math.Cos(2 * math.Pi * (float64(i) + 0.5) / 200)
 	}
-	flat := changed(x, 0, 3)
+	flat, long := changed(x, 0, 3), make([]float64, longest/2+1)
+	copy(long, x)
 	cases := []struct {
 		name string
 		a, b *Motion
@@ -281,6 +282,7 @@ func TestDifferentAndWhy(t *testing.T) {
 		{"the strongest second alone", a, motion(t, x[strong-100:strong+100], stepS), ""},
 		{"five cycles", motion(t, sine, 0.01), motion(t, sine, 0.01), "only 10 crossings of zero in common"},
 		{"far from its step", a, motion(t, everyNth(x, 11), 11*stepS), "steps differ more than tenfold"},
+		{"many hours long", motion(t, long, stepS), motion(t, long, stepS), "too long to compare"},
 		{"at half its speed", a, motion(t, x, 2*stepS), ""},
 	}
 	for _, c := range cases {

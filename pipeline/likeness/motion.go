@@ -12,6 +12,10 @@ const (
 	fragment  = 0.1   // least part of the energy of one, where the other is Scaled of that part
 	sameScale = 0.002 // from 1, of factors that a rounded g explains
 	crossings = 16    // fewest of zero in common
+
+	// longest is how many samples of both, at the finer step, are compared: gonum's
+	// transforms have room for 2²⁶.
+	longest = 1 << 25
 )
 
 // limits are the least |ρ| of each kind.

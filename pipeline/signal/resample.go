@@ -25,7 +25,7 @@ func Resample(x []float64, factor int) []float64 {
 	if factor == 1 || len(x) < 2 {
 		return append([]float64(nil), x...)
 	}
-	n := FastLength(len(x))
+	n := fastLength(len(x), factor)
 	narrow := Transform(x, n)
 	wide := make([]complex128, n*factor/2+1)
 	copy(wide, narrow)
@@ -39,18 +39,40 @@ func Resample(x []float64, factor int) []float64 {
 	return out
 }
 
-// FastLength returns the least number from n on that has no prime factor above 5: the
-// cost of a transform grows with the sum of the prime factors of its length.
-func FastLength(n int) int {
-	for ; ; n++ {
-		rest := n
-		for _, prime := range [...]int{2, 3, 5} {
-			for rest > 1 && rest%prime == 0 {
-				rest /= prime
-			}
+// FastLength returns the least number from n on that has no prime factor above 5, since
+// the cost of a transform grows with the sum of the prime factors of its length, and no
+// more factors than a transform holds.
+func FastLength(n int) int { return fastLength(n, 1) }
+
+// mostFactors is how many factors of a length gonum's transforms have room for; beyond
+// they panic. They count two twos as one four.
+const mostFactors = 13
+
+// fastLength is FastLength of n so that the transform of n·factor has room too.
+func fastLength(n, factor int) int {
+	for n = max(n, 1); ; n++ {
+		if factors, rest := smooth(n); rest > 1 || factors > mostFactors {
+			continue
 		}
-		if rest <= 1 {
+		// A factor of other primes is one of its own at most for each five.
+		factors, rest := smooth(n * factor)
+		for ; rest > 1; rest /= 5 {
+			factors++
+		}
+		if factors <= mostFactors {
 			return n
 		}
 	}
+}
+
+// smooth counts the factors 4, 2, 3 and 5 of n and returns what is left of it.
+func smooth(n int) (factors, rest int) {
+	rest = n
+	for _, factor := range [...]int{4, 2, 3, 5} {
+		for rest > 1 && rest%factor == 0 {
+			rest /= factor
+			factors++
+		}
+	}
+	return factors, rest
 }
