@@ -383,3 +383,29 @@ func TestTheCatalogueDescribesHeldRecords(t *testing.T) {
 		t.Error("the same catalogue again changed the store")
 	}
 }
+
+// A fault of this program on one file is that file's rejection, and the others are read.
+func TestAFaultStopsNoBatch(t *testing.T) {
+	dir := t.TempDir()
+	put(t, dir, "a000.AT2", at2("Invented", "Site 00", "000", 1))
+	store := newStore(t)
+	run, err := begin(t.Context(), store, withDefaults(options(dir)))
+	if err != nil {
+		t.Fatal(err)
+	}
+	run.reader.computer.solvers = solvers{} // without a grid, which it cannot do
+	var cause string
+	opts := withDefaults(options(dir))
+	opts.Progress = func(p Progress) { cause = fmt.Sprint(p.File.Causes) }
+	files, err := ingest.Discover([]string{dir})
+	if err != nil {
+		t.Fatal(err)
+	}
+	w := newWriter(store, run, opts, newSource(files, nil))
+	if err := w.files(t.Context()); err != nil {
+		t.Fatal(err)
+	}
+	if w.summary.Rejected != 1 || !strings.Contains(cause, "a fault of swaybook") {
+		t.Errorf("%d files rejected for %s, want one for a fault of the program", w.summary.Rejected, cause)
+	}
+}
