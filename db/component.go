@@ -98,6 +98,13 @@ func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, genera
 		if err != nil {
 			return fmt.Errorf("store conditioning: %w", err)
 		}
+		for _, f := range c.Findings {
+			err := t.exec(ctx, `INSERT INTO conditioned_finding (generation_id, record_id, role, flag, value, bound, words) VALUES (?, ?, ?, ?, ?, ?, ?)`,
+				generation, recordID, role, f.Flag, f.Value, f.Bound, f.Words)
+			if err != nil {
+				return fmt.Errorf("store finding: %w", err)
+			}
+		}
 	}
 	for _, name := range slices.Sorted(maps.Keys(computed.measures)) {
 		err := t.exec(ctx, `INSERT INTO measure (generation_id, record_id, role, name, value) VALUES (?, ?, ?, ?, ?)`,
@@ -253,7 +260,7 @@ func (t *Tx) forgetConditioned(ctx context.Context, componentID int64, lowCutHz,
 }
 
 // roleTables hold rows by record and role.
-var roleTables = []string{"component", "spectrum", "measure", "conditioning"}
+var roleTables = append([]string{"component"}, computedTables...)
 
 // MoveComponents gives components of one record, by their roles, to another, where they
 // have the roles that these are the keys of, with their spectra and measures. What their

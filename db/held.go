@@ -42,7 +42,7 @@ const (
 	DetailPeaks                        // Peaks
 	DetailBand                         // StepS, LowCutHz, HighCutHz and Conditioning
 	DetailMeasures                     // Measures
-	DetailFindings                     // Findings
+	DetailFindings                     // Findings, with DetailBand those of Conditioning too
 	DetailChannel                      // ID and the rest of Component, the source file's description too
 	AllDetails     = DetailRecord | DetailMotion | DetailPeaks | DetailBand | DetailMeasures | DetailFindings | DetailChannel
 )
@@ -89,6 +89,9 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 		if findings, err = s.findings(ctx, condition, args); err != nil {
 			return nil, err
 		}
+		if err := s.addConditionedFindings(ctx, conditioned, condition, args); err != nil {
+			return nil, err
+		}
 	}
 	var measures map[roleOf]map[string]float64
 	if details&DetailMeasures != 0 {
@@ -132,6 +135,12 @@ type roleOf struct {
 	role   string
 }
 
+// findingOf is a finding of a component.
+type findingOf struct {
+	roleOf
+	Finding
+}
+
 // ofRecords restricts rows of a generation to the records of the components that meet
 // the condition, where there is one.
 func (s *Snapshot) ofRecords(condition string, args []any) (string, []any) {
@@ -173,11 +182,7 @@ func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (
 	if err != nil {
 		return nil, fmt.Errorf("read findings: %w", err)
 	}
-	type row struct {
-		roleOf
-		Finding
-	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.record, &v.role, &v.Flag, &v.Value, &v.Bound, &v.Words} })
+	found, err := collect(rows, func(v *findingOf) []any { return []any{&v.record, &v.role, &v.Flag, &v.Value, &v.Bound, &v.Words} })
 	if err != nil {
 		return nil, fmt.Errorf("read findings: %w", err)
 	}
@@ -188,32 +193,65 @@ func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (
 	return out, nil
 }
 
-// Flag adds to components that were read without DetailFindings those findings that have
-// one of these flags, the flag alone: a question over thousands of components screens for
-// a few flags, which few have.
-func (s *Snapshot) Flag(ctx context.Context, components []HeldComponent, flags []string) error {
-	flagged := map[roleOf][]Finding{}
-	for _, flag := range flags {
-		rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role FROM finding f JOIN component c ON c.id = f.component_id WHERE f.flag = ?`, flag)
-		if err != nil {
-			return fmt.Errorf("read findings: %w", err)
-		}
-		found, err := collect(rows, func(k *roleOf) []any { return []any{&k.record, &k.role} })
-		if err != nil {
-			return fmt.Errorf("read findings: %w", err)
-		}
-		for _, k := range found {
-			flagged[k] = append(flagged[k], Finding{Flag: flag})
+// addConditionedFindings adds to the conditionings what was found in the motions that
+// they left.
+func (s *Snapshot) addConditionedFindings(ctx context.Context, to map[roleOf]*Conditioning, condition string, args []any) error {
+	where, args := s.ofRecords(condition, args)
+	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, flag, value, bound, words FROM conditioned_finding`+where+` ORDER BY record_id, role, flag`, args...)
+	if err != nil {
+		return fmt.Errorf("read findings: %w", err)
+	}
+	found, err := collect(rows, func(v *findingOf) []any { return []any{&v.record, &v.role, &v.Flag, &v.Value, &v.Bound, &v.Words} })
+	if err != nil {
+		return fmt.Errorf("read findings: %w", err)
+	}
+	for _, v := range found {
+		if k := to[v.roleOf]; k != nil {
+			k.Findings = append(k.Findings, v.Finding)
 		}
 	}
-	if len(flagged) == 0 {
+	return nil
+}
+
+// Flag adds to components that were read without DetailFindings those findings that have
+// one of these flags, the flag alone, and to their conditionings, where those were read,
+// those of the conditioned motion: a question over thousands of components screens for a
+// few flags, which few have.
+func (s *Snapshot) Flag(ctx context.Context, components []HeldComponent, flags []string) error {
+	delivered, left := map[roleOf][]Finding{}, map[roleOf][]Finding{}
+	for _, flag := range flags {
+		err := s.flag(ctx, delivered, flag, `SELECT c.record_id, c.role FROM finding f JOIN component c ON c.id = f.component_id WHERE f.flag = ?`, flag)
+		if err == nil {
+			err = s.flag(ctx, left, flag, `SELECT record_id, role FROM conditioned_finding WHERE generation_id = ? AND flag = ?`, s.Generation.ID, flag)
+		}
+		if err != nil {
+			return fmt.Errorf("read findings: %w", err)
+		}
+	}
+	if len(delivered)+len(left) == 0 {
 		return nil
 	}
 	for i := range components {
 		c := &components[i]
-		c.Findings = flagged[roleOf{c.RecordID, c.Role}]
+		c.Findings = delivered[roleOf{c.RecordID, c.Role}]
+		if c.Conditioning != nil {
+			c.Conditioning.Findings = left[roleOf{c.RecordID, c.Role}]
+		}
 	}
 	return nil
+}
+
+// flag adds the flag to the components that the query names.
+func (s *Snapshot) flag(ctx context.Context, flagged map[roleOf][]Finding, flag, query string, args ...any) error {
+	rows, err := s.tx.QueryContext(ctx, query, args...)
+	if err != nil {
+		return err
+	}
+	found, err := collect(rows, func(k *roleOf) []any { return []any{&k.record, &k.role} })
+	for _, k := range found {
+		flagged[k] = append(flagged[k], Finding{Flag: flag})
+	}
+	return err
 }
 
 // measures are those of the generation but for the peaks.

@@ -116,15 +116,15 @@ type Component struct {
 	HighCutHz  *float64
 	HeaderPeak *float64 // m/s²
 	Warnings   []string
-	Findings   []Finding // for writing, and where they are asked for
+	Findings   []Finding // as it was delivered; for writing, and where they are asked for
 	SourceID   int64
 	SourceLine int
 	// Of the source file, for reading only.
 	SourcePath, SourceSHA256, SourceFormat string
 }
 
-// Finding is one thing that is wrong with a component as it was delivered: the value
-// measured and the bound that it is beyond.
+// Finding is one thing that is wrong with a motion: the value measured and the bound that
+// it is beyond.
 type Finding struct {
 	Flag         string
 	Value, Bound float64
@@ -179,6 +179,9 @@ type Conditioning struct {
 	LowCutHz  *float64 // corners of the filters that the recipe applied
 	HighCutHz *float64
 	LongS     *float64 // longest period that its high-pass filter leaves, in s
+	// Findings are what is wrong with the motion as the recipe left it; for writing, and
+	// where findings are asked for.
+	Findings []Finding
 }
 
 // Spectra is what is computed of one component, in the form in which it is stored.

@@ -76,4 +76,4 @@ func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, comp
 }
 
 // computedTables hold what is computed of a record's roles in a generation.
-var computedTables = []string{"spectrum", "measure", "conditioning"}
+var computedTables = []string{"spectrum", "measure", "conditioned_finding", "conditioning"}

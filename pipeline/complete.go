@@ -6,6 +6,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline/condition"
+	"swaybook/pipeline/signal"
 )
 
 // Recomputed is one held component of which the generation lacked the spectra done.
@@ -53,7 +54,7 @@ func (c *completer) process(ctx context.Context, u db.Unsolved) (completed, erro
 	out := completed{component: u}
 	motion, err := stored.DecodeMotion()
 	if err == nil {
-		out.spectra, err = c.run.reader.computer.compute(condition.Component(motion))
+		out.spectra, err = c.run.reader.computer.compute(condition.Component(motion), signal.Arrival(motion.Acceleration, motion.StepS))
 	}
 	out.err = err
 	return out, ctx.Err()

@@ -6,6 +6,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline/condition"
+	"swaybook/pipeline/quality"
 )
 
 // computer turns delivered motions into what a generation stores of them. The workers
@@ -23,8 +24,9 @@ func newComputer(g db.Generation) (computer, error) {
 	return computer{recipe: recipe, solvers: newSolvers(g.Grid)}, nil
 }
 
-// compute conditions one component and solves it.
-func (c *computer) compute(delivered condition.Component) (db.Spectra, error) {
+// compute conditions one component, whose motion arrives at the sample arrival, and solves
+// it.
+func (c *computer) compute(delivered condition.Component, arrival int) (db.Spectra, error) {
 	motion, err := c.recipe.Apply(delivered)
 	if err != nil {
 		return db.Spectra{}, fmt.Errorf("recipe %s: %w", c.recipe.Name, err)
@@ -34,18 +36,32 @@ func (c *computer) compute(delivered condition.Component) (db.Spectra, error) {
 		return db.Spectra{}, err
 	}
 	sd := solver.SD(nil, motion.Acceleration)
-	return c.solvers.spectra(sd, c.solvers.measures(motion, sd), conditioningOf(motion)), nil
+	return c.solvers.spectra(sd, c.solvers.measures(motion, sd), conditioningOf(motion, delivered.StepS*float64(arrival))), nil
 }
 
 // conditioningOf is what the store keeps of a conditioned motion, nil where it is the
-// delivered one.
-func conditioningOf(m condition.Conditioned) *db.Conditioning {
+// delivered one, in which the motion arrives after arrivalS.
+func conditioningOf(m condition.Conditioned, arrivalS float64) *db.Conditioning {
 	if !m.IsChanged {
 		return nil
 	}
 	return &db.Conditioning{
-		StepS: m.StepS, Samples: len(m.Acceleration), LeadS: m.LeadS, LowCutHz: knownOrNil(m.LowCutHz), HighCutHz: knownOrNil(m.HighCutHz), LongS: knownOrNil(m.LongS),
+		Findings: conditionedFindings(m, arrivalS),
+		StepS:    m.StepS, Samples: len(m.Acceleration), LeadS: m.LeadS, LowCutHz: knownOrNil(m.LowCutHz), HighCutHz: knownOrNil(m.HighCutHz), LongS: knownOrNil(m.LongS),
 	}
+}
+
+// conditionedFindings are what is found in the motion as the recipe left it.
+func conditionedFindings(m condition.Conditioned, arrivalS float64) []db.Finding {
+	onset := max(0, int(math.Round((arrivalS+m.LeadS)/m.StepS)))
+	if arrivalS == 0 || onset >= len(m.Acceleration) {
+		onset = 0 // begins within the motion, or was trimmed away
+	}
+	var out []db.Finding
+	for _, f := range quality.AssessConditioned(m.Acceleration, m.StepS, onset) {
+		out = append(out, db.Finding(f))
+	}
+	return out
 }
 
 func knownOrNil(x float64) *float64 {

@@ -211,24 +211,26 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 
 // solve completes s by what is computed of the channel.
 func (r *reader) solve(s *solved, c ingest.Channel) error {
+	arrival := signal.Arrival(c.Acceleration, c.StepS)
 	spectra, err := r.computer.compute(condition.Component{
 		Acceleration: c.Acceleration, StepS: c.StepS, State: string(c.Processing), LowCutHz: numberOrNaN(c.LowCutHz), HighCutHz: numberOrNaN(c.HighCutHz),
-	})
+	}, arrival)
 	if _, cannot := errors.AsType[*condition.StepError](err); err != nil && !cannot {
 		return err // of a recipe that cannot be done the samples are kept
 	}
-	s.channel, s.samples, s.spectra, s.findings = withoutSamples(c), len(c.Acceleration), spectra, findingsOf(&c)
+	s.channel, s.samples, s.spectra, s.findings = withoutSamples(c), len(c.Acceleration), spectra, findingsOf(&c, arrival)
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
 	return nil
 }
 
-// findingsOf are what reading found and what the samples show.
-func findingsOf(c *ingest.Channel) []db.Finding {
+// findingsOf are what reading found and what the samples show, in which the motion arrives
+// at the sample arrival.
+func findingsOf(c *ingest.Channel, arrival int) []db.Finding {
 	var out []db.Finding
 	for _, f := range c.Findings {
 		out = append(out, db.Finding(f))
 	}
-	for _, f := range quality.Assess(c.Acceleration, c.StepS, signal.Arrival(c.Acceleration, c.StepS)) {
+	for _, f := range quality.Assess(c.Acceleration, c.StepS, arrival) {
 		out = append(out, db.Finding(f))
 	}
 	return out

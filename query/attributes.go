@@ -128,7 +128,7 @@ var attributeDetails = map[string]db.Details{
 	"dt_s": db.DetailMotion, "axis": db.DetailMotion, "azimuth_deg": db.DetailMotion, "duration_s": db.DetailMotion | db.DetailChannel, "samples": db.DetailChannel,
 	"pga_g": db.DetailPeaks, "pgv_m_s": db.DetailPeaks, "pgd_m": db.DetailPeaks,
 	"arias_m_s": db.DetailMeasures, "cav_m_s": db.DetailMeasures, "cav_standardised_m_s": db.DetailMeasures, "d5_75_s": db.DetailMeasures, "d5_95_s": db.DetailMeasures, "bracketed_s": db.DetailMeasures, "rms_m_s2": db.DetailMeasures, "mean_period_s": db.DetailMeasures, "spectrum_intensity_m": db.DetailMeasures,
-	"quality":    db.DetailFindings,
+	"quality":    db.DetailFindings | db.DetailBand,
 	"low_cut_hz": db.DetailBand, "high_cut_hz": db.DetailBand, "usable_from_s": db.DetailBand, "usable_to_s": db.DetailBand,
 	"format": db.DetailChannel, "processing": db.DetailChannel, "source": db.DetailChannel, "warnings": db.DetailChannel,
 }

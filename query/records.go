@@ -72,7 +72,7 @@ type RecordRow struct {
 	Line              *int     `json:"line"`
 	SHA256            string   `json:"sha256"`
 	Warnings          []string `json:"warnings"`
-	// Quality is what was found of the component as it was delivered.
+	// Quality is what was found of the component as it was delivered, and behind the recipe.
 	Quality []FindingRow `json:"quality"`
 	// DuplicateOf is the record from which statistics take the motion instead.
 	DuplicateOf *string `json:"duplicate_of"`
@@ -82,6 +82,7 @@ type RecordRow struct {
 // that it is beyond, of a share without unit, else in s.
 type FindingRow struct {
 	Flag  string  `json:"flag"`
+	Of    string  `json:"of"` // "delivered" or "conditioned"
 	Value float64 `json:"value"`
 	Bound float64 `json:"bound"`
 	Words string  `json:"words"`
@@ -205,14 +206,26 @@ func recordRow(c *db.HeldComponent) RecordRow {
 		Unit: orNull(c.Unit), Processing: orNull(c.Processing), LowCutHz: knownOrNull(k.LowCutHz), HighCutHz: knownOrNull(k.HighCutHz),
 		UsableFromS: &fromS, UsableToS: finiteOrNull(toS),
 		Format: c.SourceFormat, Source: c.SourcePath, Line: lineOrNull(c.SourceLine), SHA256: c.SourceSHA256,
-		Warnings: append([]string{}, c.Warnings...), Quality: findingRows(c.Findings),
+		Warnings: append([]string{}, c.Warnings...), Quality: findingRows(c),
 	}
 }
 
-func findingRows(found []db.Finding) []FindingRow {
-	rows := make([]FindingRow, len(found))
-	for i, f := range found {
-		rows[i] = FindingRow(f)
+// The motions in which something is found.
+const (
+	ofDelivered   = "delivered"
+	ofConditioned = "conditioned"
+)
+
+func findingRows(c *db.HeldComponent) []FindingRow {
+	rows := make([]FindingRow, 0, len(c.Findings))
+	add := func(of string, found []db.Finding) {
+		for _, f := range found {
+			rows = append(rows, FindingRow{Flag: f.Flag, Of: of, Value: f.Value, Bound: f.Bound, Words: f.Words})
+		}
+	}
+	add(ofDelivered, c.Findings)
+	if c.Conditioning != nil {
+		add(ofConditioned, c.Conditioning.Findings)
 	}
 	return rows
 }

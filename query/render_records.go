@@ -110,11 +110,15 @@ func (r *RecordRow) csv(l *csvLine) {
 	l.end()
 }
 
-// qualityWords are the findings, each as "flag: sentence", joined with "; ".
+// qualityWords are the findings, each as "flag: sentence", of the conditioned motion as
+// "flag behind the recipe: sentence", joined with "; ".
 func (r *RecordRow) qualityWords() string {
 	words := make([]string, len(r.Quality))
 	for i, f := range r.Quality {
 		words[i] = f.Flag + ": " + f.Words
+		if f.Of == ofConditioned {
+			words[i] = f.Flag + " behind the recipe: " + f.Words
+		}
 	}
 	return strings.Join(words, "; ")
 }

@@ -17,8 +17,9 @@ const (
 	// duplicated, low_signal.
 	ScreenNormal Screen = "normal"
 	// ScreenStrict leaves out besides what is a doubtful or partial one: spikes, which may
-	// be the motion's own where sampling is coarse, peak_mismatch, irregular_sampling, late_start, early_end, several_events, and, of components that
-	// the recipe left as delivered, offset, baseline_step and drift.
+	// be the motion's own where sampling is coarse, peak_mismatch, irregular_sampling,
+	// late_start, early_end, several_events, and of the motion behind the recipe offset,
+	// baseline_step and drift.
 	ScreenStrict Screen = "strict"
 )
 
@@ -54,10 +55,12 @@ type qualityFlags struct {
 
 // kind is a kind of finding.
 type kind struct {
-	name     string
-	of       func(*qualityFlags) *bool // where an expression sees it
-	screen   Screen                    // the mildest that leaves it out, "" for none
-	isMended bool                      // by a high-pass filter of the recipe
+	name   string
+	of     func(*qualityFlags) *bool // where an expression sees it
+	screen Screen                    // the mildest that leaves it out, "" for none
+	// isLeft says that it counts of the motion as the recipe left it, which is what the
+	// spectrum is of.
+	isLeft bool
 }
 
 // flags are all of them, in the order in which they count as reasons.
@@ -78,16 +81,22 @@ var flags = []kind{
 	{"no_pre_event", func(q *qualityFlags) *bool { return &q.NoPreEvent }, "", false},
 }
 
-// qualityOf is what was found of the components, those delivered as they are.
+// qualityOf is what counts of the components' findings.
 func qualityOf(components ...*db.HeldComponent) (q qualityFlags) {
-	for _, c := range components {
-		for _, f := range c.Findings {
-			if at := slices.IndexFunc(flags, func(known kind) bool { return known.name == f.Flag }); at >= 0 {
-				*flags[at].of(&q) = true
-			}
-		}
+	for _, known := range flags {
+		*known.of(&q) = slices.ContainsFunc(components, known.isFoundIn)
 	}
 	return q
+}
+
+// isFoundIn reports whether the component has such a finding that counts. One that was
+// left as it was delivered has no other motion.
+func (k kind) isFoundIn(c *db.HeldComponent) bool {
+	found := c.Findings
+	if k.isLeft && c.Conditioning != nil {
+		found = c.Conditioning.Findings
+	}
+	return slices.ContainsFunc(found, func(f db.Finding) bool { return f.Flag == k.name })
 }
 
 // includes reports whether the screen leaves motions out for a kind of finding.
@@ -108,16 +117,8 @@ func (s Screen) flags() (names []string) {
 // screened returns the finding for which the screen leaves the motion out, "" for none.
 func (s Screen) screened(m *motion) string {
 	for _, known := range flags {
-		if !s.includes(known) {
-			continue
-		}
-		for _, c := range m.members {
-			if known.isMended && c.Conditioning != nil && c.Conditioning.LongS != nil {
-				continue
-			}
-			if slices.ContainsFunc(c.Findings, func(f db.Finding) bool { return f.Flag == known.name }) {
-				return known.name
-			}
+		if s.includes(known) && slices.ContainsFunc(m.members, known.isFoundIn) {
+			return known.name
 		}
 	}
 	return ""

@@ -65,22 +65,54 @@ func TestScreens(t *testing.T) {
 	}
 }
 
-// What a high-pass filter mends does not count against what it mended; other steps mend
-// nothing.
-func TestMendedFindings(t *testing.T) {
-	mended := &db.HeldComponent{Conditioning: &db.Conditioning{StepS: 0.01, LongS: ptr(8.0)}}
-	mended.Findings = []db.Finding{{Flag: "drift"}, {Flag: "offset"}, {Flag: "baseline_step"}}
-	m := motion{members: []*db.HeldComponent{mended}}
-	if got := ScreenStrict.screened(&m); got != "" {
-		t.Errorf("conditioned: %s", got)
+// Of a conditioned component what remains of the findings about the motion counts, and
+// what was found of the delivered one where that is about more.
+func TestFindingsThatRemain(t *testing.T) {
+	for _, test := range []struct {
+		name            string
+		delivered, left []db.Finding
+		isConditioned   bool
+		want            string
+	}{
+		{"as delivered", []db.Finding{{Flag: "drift"}, {Flag: "offset"}, {Flag: "baseline_step"}}, nil, false, "offset"},
+		{"mended", []db.Finding{{Flag: "drift"}, {Flag: "offset"}, {Flag: "baseline_step"}}, nil, true, ""},
+		{"mended in part", []db.Finding{{Flag: "drift"}, {Flag: "offset"}}, []db.Finding{{Flag: "drift"}}, true, "drift"},
+		{"made by the recipe", nil, []db.Finding{{Flag: "offset"}}, true, "offset"},
+		{"not to be mended", []db.Finding{{Flag: "spikes"}}, nil, true, "spikes"},
+	} {
+		c := &db.HeldComponent{Component: db.Component{Findings: test.delivered}}
+		if test.isConditioned {
+			c.Conditioning = &db.Conditioning{StepS: 0.01, Findings: test.left}
+		}
+		if got := ScreenStrict.screened(&motion{members: []*db.HeldComponent{c}}); got != test.want {
+			t.Errorf("%s: %q, want %q", test.name, got, test.want)
+		}
+		if q := qualityOf(c); q.Drift != (test.want == "drift") && test.isConditioned || q.Spikes != (test.want == "spikes") {
+			t.Errorf("%s: an expression sees %+v", test.name, q)
+		}
 	}
-	mended.Conditioning.LongS = nil
-	if got := ScreenStrict.screened(&m); got != "offset" {
-		t.Errorf("tapered: %q", got)
+}
+
+// What is stored of the conditioned motion is found by screens, expressions and lists.
+func TestConditionedFindingsInTheStore(t *testing.T) {
+	left := pair(1, 1)
+	left[0].left = []string{"drift"}
+	mended := pair(1, 1)
+	mended[0].found, mended[0].left = []string{"drift"}, []string{}
+	store := newStore(t, handGrid, []inventedRecord{
+		{code: "LEFT", siting: "free-field", components: left}, {code: "MENDED", siting: "free-field", components: mended},
+	})
+	answer, err := SpectrumQuestion{Selection: Selection{Component: ComponentGeomean, Screen: ScreenStrict}, Damping: 0.02}.Ask(t.Context(), store)
+	if err != nil || answer.Selection.Records != 1 || fmt.Sprint(answer.Selection.LeftOut) != "[1 record left out: screened out: drift]" {
+		t.Errorf("screen: %+v, %v", answer, err)
 	}
-	mended.Conditioning = nil
-	if got := ScreenStrict.screened(&m); got != "offset" {
-		t.Errorf("as delivered: %q", got)
+	list, err := RecordsQuestion{Selection: Selection{Where: `quality.drift`}}.Ask(t.Context(), store)
+	if err != nil || len(list.Rows) != 1 || list.Rows[0].Record != "LEFT" || list.Rows[0].qualityWords() != "drift behind the recipe: invented" {
+		t.Errorf("list: %+v, %v", list, err)
+	}
+	list, err = RecordsQuestion{Selection: Selection{Where: `record == "MENDED" and component == "h1"`}}.Ask(t.Context(), store)
+	if err != nil || len(list.Rows) != 1 || list.Rows[0].qualityWords() != "drift: invented" {
+		t.Errorf("what was mended: %+v, %v", list, err)
 	}
 }
 

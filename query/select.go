@@ -60,7 +60,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		details |= db.DetailBand
 	}
 	if s.Screen != ScreenNone {
-		details |= db.DetailBand // by which what a recipe mended is known
+		details |= db.DetailBand // behind a recipe other findings count
 	}
 	held, err := snapshot.Components(ctx, details)
 	if err == nil && details&db.DetailFindings == 0 {

@@ -48,7 +48,10 @@ type inventedComponent struct {
 	peak  float64  // m/s² of the pulse; 0: 1
 	axis  string   // "": by the role
 	found []string // flags
-	lowHz float64  // corner of the high-pass filter; 0: 0.05
+	// left are the flags of the conditioned motion, nil of a component that was left as
+	// it was delivered.
+	left  []string
+	lowHz float64 // corner of the high-pass filter; 0: 0.05
 	// azimuthDeg is that of a horizontal, NaN where unknown; 0: by the role.
 	azimuthDeg float64
 	isShort    bool // ends with the pulse
@@ -177,9 +180,7 @@ func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64
 	if c.axis != "" {
 		component.Axis = c.axis
 	}
-	for _, flag := range c.found {
-		component.Findings = append(component.Findings, db.Finding{Flag: flag, Value: 2, Bound: 1, Words: "invented"})
-	}
+	component.Findings = inventedFindings(c.found)
 	return tx.AddComponent(ctx, record, component, data, digest, g.ID, c.spectra(g.Grid))
 }
 
@@ -221,7 +222,21 @@ func (c inventedComponent) spectra(grid db.Grid) db.Spectra {
 	}
 	return db.NewSpectra(out, map[string]float64{
 		db.MeasurePGA: c.level * StandardGravity, db.MeasurePGV: c.level, db.MeasurePGD: c.level,
-	}, nil)
+	}, c.conditioning())
+}
+
+func (c inventedComponent) conditioning() *db.Conditioning {
+	if c.left == nil {
+		return nil
+	}
+	return &db.Conditioning{StepS: c.step(), Samples: len(c.samples()), Findings: inventedFindings(c.left)}
+}
+
+func inventedFindings(flags []string) (out []db.Finding) {
+	for _, flag := range flags {
+		out = append(out, db.Finding{Flag: flag, Value: 2, Bound: 1, Words: "invented"})
+	}
+	return out
 }
 
 // near allows rounding of a few operations.

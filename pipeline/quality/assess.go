@@ -58,6 +58,19 @@ func Assess(acceleration []float64, stepS float64, onset int) []Finding {
 	return a.found
 }
 
+// AssessConditioned returns which of FlagOffset, FlagBaselineStep and FlagDrift remain in a
+// motion that a recipe has conditioned, with its pads: those are about the motion itself,
+// and what is wrong there is in its spectrum.
+func AssessConditioned(acceleration []float64, stepS float64, onset int) []Finding {
+	if len(acceleration) == 0 {
+		return nil
+	}
+	a := &assessment{x: acceleration, stepS: stepS, onset: onset, peak: signal.Greatest(acceleration)}
+	a.levels()
+	a.restOf(signal.Integrate(nil, a.x, a.stepS))
+	return a.found
+}
+
 type assessment struct {
 	x     []float64
 	stepS float64
@@ -117,15 +130,19 @@ func (a *assessment) levels() {
 	}
 }
 
-// rest looks whether the ground, integrated from rest, comes back to it: whether its mean
-// velocity over the last tenth is small against the peak, which is the slope at which the
-// displacement drifts.
+// rest looks whether the ground, integrated from rest at the level before the arrival,
+// comes back to it.
 func (a *assessment) rest() {
 	v := append([]float64(nil), a.x...)
 	if float64(a.onset)*a.stepS >= preEventS {
 		signal.Subtract(v, signal.Mean(v[:a.onset]))
 	}
-	signal.Integrate(v, v, a.stepS)
+	a.restOf(signal.Integrate(v, v, a.stepS))
+}
+
+// restOf looks whether the mean of a velocity over its last tenth is small against its
+// peak: it is the slope at which the displacement drifts.
+func (a *assessment) restOf(v []float64) {
 	last := v[len(v)-max(1, len(v)/10):]
 	if share := math.Abs(signal.Mean(last)) / signal.Greatest(v); share > restShare {
 		a.add(FlagDrift, share, restShare, "the displacement drifts at the end by %.2g of PGV", share)
