@@ -58,6 +58,9 @@ func conditionedFindings(m condition.Conditioned, arrivalS float64) []db.Finding
 		onset = 0 // begins within the motion, or was trimmed away
 	}
 	var out []db.Finding
+	for _, e := range m.Exceeded {
+		out = append(out, db.Finding(e))
+	}
 	for _, f := range quality.AssessConditioned(m.Acceleration, m.StepS, onset) {
 		out = append(out, db.Finding(f))
 	}

@@ -19,7 +19,7 @@ const (
 	// ScreenStrict leaves out besides what is a doubtful or partial one: spikes, which may
 	// be the motion's own where sampling is coarse, peak_mismatch, irregular_sampling,
 	// late_start, early_end, several_events, and of the motion behind the recipe offset,
-	// baseline_step and drift.
+	// baseline_step, drift, final_velocity and final_displacement.
 	ScreenStrict Screen = "strict"
 )
 
@@ -37,20 +37,22 @@ func ParseScreen(text string) (Screen, error) {
 
 // qualityFlags is what an expression sees of a motion's findings: of a pair those of both.
 type qualityFlags struct {
-	Clipped       bool `expr:"clipped"`
-	Spikes        bool `expr:"spikes"`
-	LostData      bool `expr:"lost_data"`
-	Duplicated    bool `expr:"duplicated"`
-	LowSignal     bool `expr:"low_signal"`
-	PeakMismatch  bool `expr:"peak_mismatch"`
-	Irregular     bool `expr:"irregular_sampling"`
-	LateStart     bool `expr:"late_start"`
-	EarlyEnd      bool `expr:"early_end"`
-	SeveralEvents bool `expr:"several_events"`
-	Offset        bool `expr:"offset"`
-	BaselineStep  bool `expr:"baseline_step"`
-	Drift         bool `expr:"drift"`
-	NoPreEvent    bool `expr:"no_pre_event"`
+	Clipped           bool `expr:"clipped"`
+	Spikes            bool `expr:"spikes"`
+	LostData          bool `expr:"lost_data"`
+	Duplicated        bool `expr:"duplicated"`
+	LowSignal         bool `expr:"low_signal"`
+	PeakMismatch      bool `expr:"peak_mismatch"`
+	Irregular         bool `expr:"irregular_sampling"`
+	LateStart         bool `expr:"late_start"`
+	EarlyEnd          bool `expr:"early_end"`
+	SeveralEvents     bool `expr:"several_events"`
+	Offset            bool `expr:"offset"`
+	BaselineStep      bool `expr:"baseline_step"`
+	Drift             bool `expr:"drift"`
+	FinalVelocity     bool `expr:"final_velocity"`
+	FinalDisplacement bool `expr:"final_displacement"`
+	NoPreEvent        bool `expr:"no_pre_event"`
 }
 
 // kind is a kind of finding.
@@ -78,6 +80,8 @@ var flags = []kind{
 	{"offset", func(q *qualityFlags) *bool { return &q.Offset }, ScreenStrict, true},
 	{"baseline_step", func(q *qualityFlags) *bool { return &q.BaselineStep }, ScreenStrict, true},
 	{"drift", func(q *qualityFlags) *bool { return &q.Drift }, ScreenStrict, true},
+	{"final_velocity", func(q *qualityFlags) *bool { return &q.FinalVelocity }, ScreenStrict, true},
+	{"final_displacement", func(q *qualityFlags) *bool { return &q.FinalDisplacement }, ScreenStrict, true},
 	{"no_pre_event", func(q *qualityFlags) *bool { return &q.NoPreEvent }, "", false},
 }
 

@@ -6,6 +6,7 @@ import (
 	"testing"
 
 	"swaybook/db"
+	"swaybook/pipeline/condition"
 	"swaybook/pipeline/quality"
 )
 
@@ -14,6 +15,7 @@ func TestFlagsAreTheOnesThatAreRaised(t *testing.T) {
 	raised := map[string]bool{
 		// Of package ingest, which this one does not import, and of the store.
 		"clipped": true, "spikes": true, "lost_data": true, "peak_mismatch": true, "irregular_sampling": true, db.FlagDuplicated: true,
+		condition.FlagFinalVelocity: true, condition.FlagFinalDisplacement: true,
 		quality.FlagOffset: true, quality.FlagBaselineStep: true, quality.FlagDrift: true, quality.FlagNoPreEvent: true,
 		quality.FlagLateStart: true, quality.FlagEarlyEnd: true, quality.FlagSeveralEvents: true, quality.FlagLowSignal: true,
 	}
@@ -42,7 +44,7 @@ func screenStore(t *testing.T) *db.Store {
 
 func TestScreens(t *testing.T) {
 	store := screenStore(t)
-	for screen, want := range map[Screen]int{ScreenNone: 15, ScreenNormal: 11, "": 11, ScreenStrict: 2} {
+	for screen, want := range map[Screen]int{ScreenNone: 17, ScreenNormal: 13, "": 13, ScreenStrict: 2} {
 		answer, err := SpectrumQuestion{Selection: Selection{Component: ComponentGeomean, Screen: screen}, Damping: 0.02}.Ask(t.Context(), store)
 		if err != nil {
 			t.Fatal(err)
@@ -51,7 +53,7 @@ func TestScreens(t *testing.T) {
 		for _, l := range answer.Selection.LeftOut {
 			left += l.Records
 		}
-		if answer.Selection.Records != want || left != 15-want {
+		if answer.Selection.Records != want || left != 17-want {
 			t.Errorf("%q: %d records, left out %v, want %d", screen, answer.Selection.Records, answer.Selection.LeftOut, want)
 		}
 	}
@@ -118,8 +120,8 @@ func TestConditionedFindingsInTheStore(t *testing.T) {
 
 func TestQualityInExpressions(t *testing.T) {
 	store := screenStore(t)
-	for where, want := range map[string]int{ // of 15 records with two horizontals
-		`quality.clipped == false`: 29, `quality.clipped`: 1, `not (quality.drift or quality.late_start)`: 28,
+	for where, want := range map[string]int{ // of 17 records with two horizontals
+		`quality.clipped == false`: 33, `quality.clipped`: 1, `not (quality.drift or quality.late_start)`: 32,
 	} {
 		list, err := RecordsQuestion{Selection: Selection{Where: where}}.Ask(t.Context(), store)
 		if err != nil || len(list.Rows) != want {

@@ -144,7 +144,7 @@ func writeRecipes(w io.Writer, form query.Format, rows []recipeRow) error {
 			p.printf("  %s\n", r.Explain)
 		}
 		for k, s := range r.Steps {
-			p.printf("  %d. %-10s  %s\n", k+1, s.Do, s.Words)
+			p.printf("  %d. %-17s  %s\n", k+1, s.Do, s.Words)
 		}
 	}
 	return p.err

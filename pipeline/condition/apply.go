@@ -35,6 +35,8 @@ type Conditioned struct {
 	// LongS is the longest period in s that the recipe's own high-pass filter leaves, +Inf
 	// where it has none.
 	LongS float64
+	// Exceeded are the limits of the recipe's checks that the motion exceeds.
+	Exceeded []Excess
 	// IsChanged is false where the component was left as it was delivered.
 	IsChanged bool
 }
@@ -116,6 +118,8 @@ func (w *work) do(s Step) error {
 		return w.trim(s.FromS, s.ToS)
 	case KindOversample:
 		w.oversample(s.Factor)
+	case KindCheck:
+		w.check(s)
 	case KindHighPass:
 		return w.highPass(s)
 	case KindLowPass:

@@ -52,6 +52,7 @@ func Standard() Recipe {
 			{Do: KindTaper, Share: 0.02},
 			{Do: KindHighPass, Order: 4, ByNoise: &NoiseRule{Ratio: 3, LeastHz: 0.05, MostHz: 1, ElseHz: 0.1}},
 			{Do: KindLowPass, Order: 4, ByNoise: &NoiseRule{Ratio: 3, LeastHz: 15, MostHz: 50, ElseHz: 0}},
+			{Do: KindCheck, VelocityShare: 0.01, DisplacementShare: 0.05},
 		},
 	}
 }

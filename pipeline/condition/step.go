@@ -16,13 +16,14 @@ type Kind string
 
 // The kinds of steps.
 const (
-	KindMean       Kind = "mean"       // takes off the mean of Window
-	KindTrend      Kind = "trend"      // takes off the polynomial of Degree that fits best
-	KindTaper      Kind = "taper"      // cosine bells over Share of the length at either end
-	KindTrim       Kind = "trim"       // keeps what lies from FromS to ToS
-	KindHighPass   Kind = "high-pass"  // acausal Butterworth filter
-	KindLowPass    Kind = "low-pass"   // acausal Butterworth filter
-	KindOversample Kind = "oversample" // band-limited samples on a step Factor times finer
+	KindMean       Kind = "mean"              // takes off the mean of Window
+	KindTrend      Kind = "trend"             // takes off the polynomial of Degree that fits best
+	KindTaper      Kind = "taper"             // cosine bells over Share of the length at either end
+	KindTrim       Kind = "trim"              // keeps what lies from FromS to ToS
+	KindHighPass   Kind = "high-pass"         // acausal Butterworth filter
+	KindLowPass    Kind = "low-pass"          // acausal Butterworth filter
+	KindOversample Kind = "oversample"        // band-limited samples on a step Factor times finer
+	KindCheck      Kind = "integration-check" // changes nothing, notes what VelocityShare and DisplacementShare do not allow
 )
 
 // Window is the part of a component that a step looks at.
@@ -46,6 +47,10 @@ type Step struct {
 	CornerHz float64    `json:"corner_hz,omitempty" toml:"corner_hz"`
 	ByNoise  *NoiseRule `json:"by_noise,omitempty" toml:"by_noise"`
 	Factor   int        `json:"factor,omitempty" toml:"factor"`
+	// VelocityShare of PGV and DisplacementShare of PGD are what may be left at the end;
+	// 0 stands for no limit.
+	VelocityShare     float64 `json:"velocity_share,omitempty" toml:"velocity_share"`
+	DisplacementShare float64 `json:"displacement_share,omitempty" toml:"displacement_share"`
 }
 
 // NoiseRule chooses a corner where the motion begins to stand out of the noise before
@@ -64,12 +69,13 @@ type NoiseRule struct {
 var uses = map[Kind][]string{
 	KindMean: {"window"}, KindTrend: {"degree"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"},
 	KindHighPass: {"order", "corner_hz", "by_noise"}, KindLowPass: {"order", "corner_hz", "by_noise"}, KindOversample: {"factor"},
+	KindCheck: {"velocity_share", "displacement_share"},
 }
 
 func (s Step) validate() error {
 	fields, ok := uses[s.Do]
 	if !ok {
-		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, high-pass, low-pass, oversample")
+		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, high-pass, low-pass, oversample, integration-check")
 	}
 	set := s.set()
 	for _, name := range slices.Sorted(maps.Keys(set)) {
@@ -88,6 +94,8 @@ func (s Step) validate() error {
 		return s.validateTrim()
 	case KindOversample:
 		return within("factor", float64(s.Factor), 2, maxFactor)
+	case KindCheck:
+		return s.validateCheck()
 	}
 	return s.validateFilter()
 }
@@ -103,6 +111,13 @@ func (s Step) validateTrim() error {
 		return fmt.Errorf("to_s: %g s is not after from_s", s.ToS)
 	}
 	return within("to_s", s.ToS, 0, 1e6)
+}
+
+func (s Step) validateCheck() error {
+	if s.VelocityShare == 0 && s.DisplacementShare == 0 {
+		return errors.New("velocity_share, displacement_share: one at least is needed")
+	}
+	return errors.Join(within("velocity_share", s.VelocityShare, 0, 1), within("displacement_share", s.DisplacementShare, 0, 1))
 }
 
 func (s Step) validateFilter() error {
@@ -134,6 +149,7 @@ func (s Step) set() map[string]bool {
 	return map[string]bool{
 		"window": s.Window != "", "degree": s.Degree != 0, "share": s.Share != 0, "from_s": s.FromS != 0, "to_s": s.ToS != 0,
 		"order": s.Order != 0, "corner_hz": s.CornerHz != 0, "by_noise": s.ByNoise != nil, "factor": s.Factor != 0,
+		"velocity_share": s.VelocityShare != 0, "displacement_share": s.DisplacementShare != 0,
 	}
 }
 

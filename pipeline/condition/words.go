@@ -24,8 +24,21 @@ func (s Step) Words() string {
 		return fmt.Sprintf("keeps %g to %g s", s.FromS, s.ToS)
 	case KindOversample:
 		return fmt.Sprintf("band-limited samples at steps %d times finer", s.Factor)
+	case KindCheck:
+		return s.checkWords()
 	}
 	return s.filterWords()
+}
+
+func (s Step) checkWords() string {
+	var limits []string
+	if s.VelocityShare > 0 {
+		limits = append(limits, fmt.Sprintf("velocity over %g of PGV", s.VelocityShare))
+	}
+	if s.DisplacementShare > 0 {
+		limits = append(limits, fmt.Sprintf("displacement over %g of PGD", s.DisplacementShare))
+	}
+	return "notes motions that, integrated from rest, end with a " + strings.Join(limits, " or a ")
 }
 
 func (s Step) filterWords() string {
