@@ -111,6 +111,35 @@ func TestParseRefuses(t *testing.T) {
 	}
 }
 
+// What is of another type than a key takes is said in words of TOML, with the line.
+func TestParseSaysWhichTypes(t *testing.T) {
+	head := "name = \"own\"\n[[step]]\n"
+	const steps = "each step under a heading of its own, [[step]] in double brackets"
+	for text, want := range map[string]string{
+		"name = 3":                                     "line 1: name: want a text in quotes",
+		"name = \"own\"\nexplain = 2041-03-03":         "line 2: explain: want a text in quotes",
+		"name = \"own\"\nstates = \"raw\"":             `line 2: states: want a list of texts, such as ["raw"]`,
+		"name = \"own\"\nstates = [1]":                 `line 2: states: want a list of texts, such as ["raw"]`,
+		"name = \"own\"\nlong_share = true":            "line 2: long_share: want a number",
+		"[[name]]\nx = 1":                              "line 1: name: want a text in quotes",
+		"name = \"own\"\n\n[step]\ndo = \"mean\"":      "line 3: step: want " + steps,
+		"[ step ]\n[ step ]\n":                         "line 2: step: want " + steps,
+		"name = \"own\"\nstep = { do = \"mean\" }":     "line 2: step: want " + steps,
+		"name = \"own\"\nstep = [1, 2]":                "line 2: step: want " + steps,
+		head + "do = 3":                                "line 3: step.do: want a text in quotes",
+		head + "do = \"trend\"\ndegree = 1.5":          "line 4: step.degree: want a whole number, without a decimal point",
+		head + "do = \"high-pass\"\ncorner_hz = \"1\"": "line 4: step.corner_hz: want a number",
+		head + "by_noise = 3":                          "line 3: step.by_noise: want a table of numbers, such as { ratio = 3, least_hz = 0.05, most_hz = 1, else_hz = 0.1 }",
+		head + "by_noise = { ratio = \"3\" }":          "line 3: step.by_noise: want a table of numbers, such as { ratio = 3, least_hz = 0.05, most_hz = 1, else_hz = 0.1 }",
+		head + "[[step.by_noise]]\nratio = 3":          "line 3: step.by_noise: want a table of numbers, such as { ratio = 3, least_hz = 0.05, most_hz = 1, else_hz = 0.1 }",
+		"name = \"own\"\nname = \"own\"":               "line 2: key name is already defined",
+	} {
+		if _, err := Parse([]byte(text)); err == nil || err.Error() != want {
+			t.Errorf("%q: %v, want %s", text, err, want)
+		}
+	}
+}
+
 func FuzzParse(f *testing.F) {
 	f.Add(ownRecipe)
 	f.Fuzz(func(t *testing.T, text string) {

@@ -4,6 +4,8 @@ import (
 	"bytes"
 	"errors"
 	"fmt"
+	"reflect"
+	"slices"
 	"strings"
 
 	"github.com/pelletier/go-toml/v2"
@@ -42,13 +44,16 @@ func Parse(text []byte) (Recipe, error) {
 	if err := decoder.Decode(&r); err != nil {
 		return Recipe{}, tomlError(err)
 	}
+	if err := checkBrackets(text); err != nil {
+		return Recipe{}, err
+	}
 	if len(r.States) == 0 && len(r.Steps) > 0 {
 		r.States = Standard().States
 	}
 	if err := r.Validate(); err != nil {
 		line := 0
 		if step, ok := errors.AsType[*StepError](err); ok {
-			line = lineOfStep(text, step.Step)
+			line = lineOf(text, step.Step, "[[step]]")
 		}
 		return Recipe{}, &FileError{line, err}
 	}
@@ -68,15 +73,87 @@ func tomlError(err error) error {
 	}
 	if wrong, ok := errors.AsType[*toml.DecodeError](err); ok {
 		line, _ := wrong.Position()
+		if want := wanted(wrong.Key()); want != "" && isOfType(wrong) {
+			return &FileError{line, fmt.Errorf("%s: want %s", strings.Join(wrong.Key(), "."), want)}
+		}
 		return &FileError{line, errors.New(strings.TrimPrefix(wrong.Error(), "toml: "))}
 	}
 	return &FileError{0, err}
 }
 
-// lineOfStep is the line of the n-th step's heading.
-func lineOfStep(text []byte, n int) int {
+// isOfType reports whether a value is of another type than its key takes: the decoder's
+// words for that name types of this program. A second table of steps is one, too.
+func isOfType(err *toml.DecodeError) bool {
+	text := err.Error()
+	return strings.Contains(text, "cannot decode") || strings.Contains(text, "cannot store") || slices.Equal(err.Key(), []string{"step"})
+}
+
+const wantedSteps = "each step under a heading of its own, [[step]] in double brackets"
+
+// wanted says for people which values a key takes, "" for an unknown key.
+func wanted(key []string) string {
+	at := reflect.TypeFor[Recipe]()
+	for _, name := range key {
+		for at.Kind() != reflect.Struct {
+			if at.Kind() != reflect.Pointer && at.Kind() != reflect.Slice {
+				return ""
+			}
+			at = at.Elem()
+		}
+		field, ok := fieldOf(at, name)
+		if !ok {
+			return ""
+		}
+		at = field
+	}
+	switch at.Kind() {
+	case reflect.String:
+		return `a text in quotes`
+	case reflect.Int:
+		return "a whole number, without a decimal point"
+	case reflect.Float64:
+		return "a number"
+	case reflect.Pointer:
+		return "a table of numbers, such as { ratio = 3, least_hz = 0.05, most_hz = 1, else_hz = 0.1 }"
+	case reflect.Slice:
+		if at.Elem().Kind() == reflect.Struct {
+			return wantedSteps
+		}
+		return `a list of texts, such as ["raw"]`
+	}
+	return ""
+}
+
+// fieldOf is the type of the field that has this key.
+func fieldOf(of reflect.Type, key string) (reflect.Type, bool) {
+	for i := range of.NumField() {
+		if f := of.Field(i); f.Tag.Get("toml") == key {
+			return f.Type, true
+		}
+	}
+	return nil, false
+}
+
+// checkBrackets refuses [step]: the decoder takes one such table for a list of one, and
+// the next for a mistake of another kind.
+func checkBrackets(text []byte) error {
+	var shape struct {
+		Step any `toml:"step"`
+	}
+	if err := toml.Unmarshal(text, &shape); err != nil {
+		return tomlError(err)
+	}
+	if _, isTable := shape.Step.(map[string]any); !isTable {
+		return nil
+	}
+	return &FileError{lineOf(text, 1, "[step]", "step="), errors.New("step: want " + wantedSteps)}
+}
+
+// lineOf is the n-th line that begins in one of these ways, blanks left out; 0 for none.
+func lineOf(text []byte, n int, beginnings ...string) int {
 	for i, line := range bytes.Split(text, []byte("\n")) {
-		if heading := strings.ReplaceAll(strings.TrimSpace(string(line)), " ", ""); strings.HasPrefix(heading, "[[step]]") {
+		bare := strings.Join(strings.Fields(string(line)), "")
+		if slices.ContainsFunc(beginnings, func(b string) bool { return strings.HasPrefix(bare, b) }) {
 			if n--; n == 0 {
 				return i + 1
 			}
