@@ -76,6 +76,8 @@ func (r Recipe) Apply(c Component) (Conditioned, error) {
 type work struct {
 	Conditioned
 	before, after int
+	// keepBefore and keepAfter of them are there because a step asks for them.
+	keepBefore, keepAfter int
 	// noise is how far the motion stands out, by frequency, once a step has asked. A
 	// filter changes motion and noise alike.
 	noise    ratios
@@ -114,6 +116,9 @@ func (w *work) do(s Step) error {
 	case KindTaper:
 		n := int(s.Share * float64(len(w.recorded())))
 		signal.Taper(w.recorded(), n, n)
+	case KindPad:
+		w.keepBefore, w.keepAfter = max(w.keepBefore, w.samplesOf(s.BeforeS)), max(w.keepAfter, w.samplesOf(s.AfterS))
+		w.pad(w.keepBefore, w.keepAfter)
 	case KindTrim:
 		return w.trim(s.FromS, s.ToS)
 	case KindOversample:
@@ -137,6 +142,11 @@ func (w *work) takeMean(window Window) {
 	signal.Subtract(x, signal.Mean(part))
 }
 
+// samplesOf is the number of steps that cover the time in s; rounding makes none more.
+func (w *work) samplesOf(timeS float64) int {
+	return int(math.Ceil(timeS/w.StepS - 1e-6))
+}
+
 // trim keeps the recorded samples from fromS on, and up to toS where that is not 0.
 func (w *work) trim(fromS, toS float64) error {
 	x := w.recorded()
@@ -149,7 +159,7 @@ func (w *work) trim(fromS, toS float64) error {
 	}
 	w.Acceleration = w.Acceleration[w.before+from : w.before+to]
 	w.LeadS -= float64(float64(w.before+from) * w.StepS)
-	w.before, w.after = 0, 0
+	w.before, w.after, w.keepBefore, w.keepAfter = 0, 0, 0, 0
 	return nil
 }
 
@@ -163,6 +173,7 @@ func (w *work) oversample(factor int) {
 	w.StepS /= float64(factor)
 	w.Oversampled *= factor
 	w.before *= factor
+	w.keepBefore, w.keepAfter = w.keepBefore*factor, w.keepAfter*factor
 	w.after = w.after*factor + factor - 1 // zeros between the last sample and the first pad
 }
 
@@ -231,7 +242,8 @@ const (
 	restShare  = 1e-3
 )
 
-// cutPads takes the ends of the pads off that hold next to nothing.
+// cutPads takes the ends of the pads off that hold next to nothing and that no step asks
+// for.
 func (w *work) cutPads() {
 	n := len(w.Acceleration)
 	from, to := 0, n
@@ -243,11 +255,11 @@ func (w *work) cutPads() {
 		isRest := func(i int) bool {
 			return math.Abs(w.Acceleration[i]) <= limit && math.Abs(d[i]) <= lost && math.Abs(v[i])*lengthS <= lost
 		}
-		for from < w.before && isRest(from) {
+		for from < w.before-w.keepBefore && isRest(from) {
 			from++
 		}
 	}
-	for to > n-w.after && math.Abs(w.Acceleration[to-1]) <= limit {
+	for to > n-w.after+w.keepAfter && math.Abs(w.Acceleration[to-1]) <= limit {
 		to--
 	}
 	w.Acceleration = w.Acceleration[from:to]

@@ -99,11 +99,15 @@ func TestParseRefuses(t *testing.T) {
 		head + "do = \"low-pass\"\norder = 4\n[step.by_noise]\nratio = 3\nleast_hz = 20\nmost_hz = 10": "line 2: step 1 (low-pass): by_noise.most_hz: 10 is outside 20 to 1000",
 		head + "do = \"oversample\"\nfactor = 4\n[[step]]\ndo = \"oversample\"\nfactor = 4":            "line 5: step 2 (oversample): factor: 16 times finer with the steps before, more than 10",
 		head + "do = \"trim\"\nfrom_s = 5\nto_s = 4":                                                   "line 2: step 1 (trim): to_s: 4 s is not after from_s",
-		"name = \"Own recipe\"":                "name: ",
-		"name = \"standard\"":                  `name: "standard" is a recipe that is built in`,
-		"name = \"own\"\nstates = [\"fresh\"]": `states: unknown state of processing "fresh"; known: raw,`,
-		"name = \"own\"\n[[step]":              "line 2: ",
-		strings.Repeat("#", 2<<20):             "a recipe of more than",
+		head + "do = \"pad\"":                                   "line 2: step 1 (pad): before_s, after_s: one at least is needed",
+		head + "do = \"pad\"\nbefore_s = -1":                    "line 2: step 1 (pad): before_s: -1 is outside 0 to 1000",
+		head + "do = \"integration-check\"":                     "line 2: step 1 (integration-check): velocity_share, displacement_share: one at least is needed",
+		head + "do = \"integration-check\"\nvelocity_share = 2": "line 2: step 1 (integration-check): velocity_share: 2 is outside 0 to 1",
+		"name = \"Own recipe\"":                                 "name: ",
+		"name = \"standard\"":                                   `name: "standard" is a recipe that is built in`,
+		"name = \"own\"\nstates = [\"fresh\"]":                  `states: unknown state of processing "fresh"; known: raw,`,
+		"name = \"own\"\n[[step]":                               "line 2: ",
+		strings.Repeat("#", 2<<20):                              "a recipe of more than",
 	} {
 		if _, err := Parse([]byte(text)); err == nil || !strings.HasPrefix(err.Error(), want) {
 			t.Errorf("%.60q: %v, want %s", text, err, want)

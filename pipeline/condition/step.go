@@ -20,6 +20,7 @@ const (
 	KindTrend      Kind = "trend"             // takes off the polynomial of Degree that fits best
 	KindTaper      Kind = "taper"             // cosine bells over Share of the length at either end
 	KindTrim       Kind = "trim"              // keeps what lies from FromS to ToS
+	KindPad        Kind = "pad"               // zeros over BeforeS and AfterS
 	KindHighPass   Kind = "high-pass"         // acausal Butterworth filter
 	KindLowPass    Kind = "low-pass"          // acausal Butterworth filter
 	KindOversample Kind = "oversample"        // band-limited samples on a step Factor times finer
@@ -43,6 +44,8 @@ type Step struct {
 	Share    float64    `json:"share,omitempty" toml:"share"`
 	FromS    float64    `json:"from_s,omitempty" toml:"from_s"`
 	ToS      float64    `json:"to_s,omitempty" toml:"to_s"`
+	BeforeS  float64    `json:"before_s,omitempty" toml:"before_s"`
+	AfterS   float64    `json:"after_s,omitempty" toml:"after_s"`
 	Order    int        `json:"order,omitempty" toml:"order"` // of one of both passages
 	CornerHz float64    `json:"corner_hz,omitempty" toml:"corner_hz"`
 	ByNoise  *NoiseRule `json:"by_noise,omitempty" toml:"by_noise"`
@@ -67,7 +70,7 @@ type NoiseRule struct {
 
 // uses are the fields that a kind of step takes.
 var uses = map[Kind][]string{
-	KindMean: {"window"}, KindTrend: {"degree"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"},
+	KindMean: {"window"}, KindTrend: {"degree"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"}, KindPad: {"before_s", "after_s"},
 	KindHighPass: {"order", "corner_hz", "by_noise"}, KindLowPass: {"order", "corner_hz", "by_noise"}, KindOversample: {"factor"},
 	KindCheck: {"velocity_share", "displacement_share"},
 }
@@ -75,7 +78,7 @@ var uses = map[Kind][]string{
 func (s Step) validate() error {
 	fields, ok := uses[s.Do]
 	if !ok {
-		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, high-pass, low-pass, oversample, integration-check")
+		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, pad, high-pass, low-pass, oversample, integration-check")
 	}
 	set := s.set()
 	for _, name := range slices.Sorted(maps.Keys(set)) {
@@ -92,6 +95,8 @@ func (s Step) validate() error {
 		return within("share", s.Share, 0.001, 0.5)
 	case KindTrim:
 		return s.validateTrim()
+	case KindPad:
+		return s.validatePad()
 	case KindOversample:
 		return within("factor", float64(s.Factor), 2, maxFactor)
 	case KindCheck:
@@ -111,6 +116,16 @@ func (s Step) validateTrim() error {
 		return fmt.Errorf("to_s: %g s is not after from_s", s.ToS)
 	}
 	return within("to_s", s.ToS, 0, 1e6)
+}
+
+// maxPadS bounds the zeros at either end in s.
+const maxPadS = 1000
+
+func (s Step) validatePad() error {
+	if s.BeforeS == 0 && s.AfterS == 0 {
+		return errors.New("before_s, after_s: one at least is needed")
+	}
+	return errors.Join(within("before_s", s.BeforeS, 0, maxPadS), within("after_s", s.AfterS, 0, maxPadS))
 }
 
 func (s Step) validateCheck() error {
@@ -148,6 +163,7 @@ const leastCornerHz = 0.01
 func (s Step) set() map[string]bool {
 	return map[string]bool{
 		"window": s.Window != "", "degree": s.Degree != 0, "share": s.Share != 0, "from_s": s.FromS != 0, "to_s": s.ToS != 0,
+		"before_s": s.BeforeS != 0, "after_s": s.AfterS != 0,
 		"order": s.Order != 0, "corner_hz": s.CornerHz != 0, "by_noise": s.ByNoise != nil, "factor": s.Factor != 0,
 		"velocity_share": s.VelocityShare != 0, "displacement_share": s.DisplacementShare != 0,
 	}

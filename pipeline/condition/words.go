@@ -22,6 +22,8 @@ func (s Step) Words() string {
 			return fmt.Sprintf("keeps what follows %g s", s.FromS)
 		}
 		return fmt.Sprintf("keeps %g to %g s", s.FromS, s.ToS)
+	case KindPad:
+		return fmt.Sprintf("zeros for at least %g s before and %g s after, which stay", s.BeforeS, s.AfterS)
 	case KindOversample:
 		return fmt.Sprintf("band-limited samples at steps %d times finer", s.Factor)
 	case KindCheck:
