@@ -3,6 +3,7 @@ package signal
 import (
 	"fmt"
 	"math"
+	"math/cmplx"
 )
 
 // section is one recursive filter of second order,
@@ -16,7 +17,7 @@ type section struct{ b0, b1, b2, a1, a2 float64 }
 // fewer digits than one polynomial.
 type Filter struct {
 	sections []section
-	// order and cornerHz are those of one passage.
+	// order and cornerHz are those of one passage, of a band the lower corner.
 	order    int
 	cornerHz float64
 }
@@ -49,12 +50,8 @@ func HighPass(order int, cornerHz, stepS float64) (Filter, error) {
 // for what is high, s in units of the corner. An odd order has 1/(s + 1) or s/(s + 1)
 // besides.
 func design(order int, cornerHz, stepS float64, high bool) (Filter, error) {
-	if order < 1 || order > MaxOrder {
-		return Filter{}, fmt.Errorf("order %d is outside 1 to %d", order, MaxOrder)
-	}
-	nyquist := 0.5 / stepS
-	if !(stepS > 0) || !(cornerHz > 0 && cornerHz < nyquist) {
-		return Filter{}, fmt.Errorf("corner of %g Hz is outside 0 to %g Hz, half the sampling rate", cornerHz, nyquist)
+	if err := checkDesign(order, cornerHz, stepS); err != nil {
+		return Filter{}, err
 	}
 	w := math.Tan(math.Pi * cornerHz * stepS)
 	f := Filter{order: order, cornerHz: cornerHz}
@@ -66,6 +63,70 @@ func design(order int, cornerHz, stepS float64, high bool) (Filter, error) {
 		f.sections = append(f.sections, first(w, high))
 	}
 	return f, nil
+}
+
+func checkDesign(order int, cornerHz, stepS float64) error {
+	if order < 1 || order > MaxOrder {
+		return fmt.Errorf("order %d is outside 1 to %d", order, MaxOrder)
+	}
+	nyquist := 0.5 / stepS
+	if !(stepS > 0) || !(cornerHz > 0 && cornerHz < nyquist) {
+		return fmt.Errorf("corner of %g Hz is outside 0 to %g Hz, half the sampling rate", cornerHz, nyquist)
+	}
+	return nil
+}
+
+// BandPass is LowPass for what is between two corners, of which one passage leaves 1/√2 of
+// the amplitude each. It has as many sections as the order says, and falls off on either
+// side as a filter of that order.
+//
+// The prototype's s becomes (s² + w₁w₂)/((w₂ - w₁)·s), w₁ and w₂ the warped corners: of each
+// of its poles p two come, the roots of s² - p·(w₂ - w₁)·s + w₁w₂.
+//
+// Source: A. V. Oppenheim and R. W. Schafer, Discrete-Time Signal Processing, 3rd ed.,
+// section 7.2 and appendix B (from memory).
+func BandPass(order int, lowHz, highHz, stepS float64) (Filter, error) {
+	if !(lowHz < highHz) {
+		return Filter{}, fmt.Errorf("corner of %g Hz is not below %g Hz", lowHz, highHz)
+	}
+	for _, corner := range []float64{lowHz, highHz} {
+		if err := checkDesign(order, corner, stepS); err != nil {
+			return Filter{}, err
+		}
+	}
+	w1, w2 := math.Tan(math.Pi*lowHz*stepS), math.Tan(math.Pi*highHz*stepS)
+	band, middle := w2-w1, float64(w1*w2)
+	f := Filter{order: order, cornerHz: lowHz}
+	for k := range order / 2 {
+		sin, cos := math.Sincos(math.Pi * (2*float64(k) + 1) / (2 * float64(order)))
+		half := complex(-float64(float64(sin*band)/2), float64(float64(cos*band)/2))
+		far := half + farRoot(half, middle)
+		near := complex(middle, 0) / far // the difference would lose digits
+		for _, root := range []complex128{near, far} {
+			re, im := real(root), imag(root)
+			f.sections = append(f.sections, between(band, float64(-2*re), float64(re*re)+float64(im*im)))
+		}
+	}
+	if order%2 == 1 {
+		f.sections = append(f.sections, between(band, band, middle))
+	}
+	return f, nil
+}
+
+// farRoot is that of √(half² - middle) which is on the side of half.
+func farRoot(half complex128, middle float64) complex128 {
+	re, im := real(half), imag(half)
+	root := cmplx.Sqrt(complex(float64(re*re)-float64(im*im)-middle, float64(2*re*im)))
+	if float64(real(root)*re)+float64(imag(root)*im) < 0 {
+		return -root
+	}
+	return root
+}
+
+// between is band·s/(s² + c·s + d).
+func between(band, c, d float64) section {
+	scale := 1 / (1 + c + d)
+	return section{b0: band * scale, b2: -band * scale, a1: 2 * (d - 1) * scale, a2: (1 - c + d) * scale}
 }
 
 // second has w, the tangent of half the corner's angle, and the damping q.

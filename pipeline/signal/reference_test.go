@@ -16,7 +16,8 @@ type reference struct {
 	StepS   float64 `json:"step_s"`
 	Filters []struct {
 		Kind          string    `json:"kind"`
-		CornerHz      float64   `json:"corner_hz"`
+		CornerHz      float64   `json:"corner_hz"` // the lower one
+		HighHz        float64   `json:"high_hz"`
 		Order         int       `json:"order"`
 		Filtered      []float64 `json:"filtered"`
 		FrequenciesHz []float64 `json:"frequencies_hz"`
@@ -76,11 +77,16 @@ func expectNear(t *testing.T, what string, got, want []float64, share float64) {
 func TestFiltersAgainstSciPy(t *testing.T) {
 	r, x := loadReference(t)
 	for _, want := range r.Filters {
-		design := LowPass
-		if want.Kind == "highpass" {
-			design = HighPass
+		var f Filter
+		var err error
+		switch want.Kind {
+		case "lowpass":
+			f, err = LowPass(want.Order, want.CornerHz, r.StepS)
+		case "highpass":
+			f, err = HighPass(want.Order, want.CornerHz, r.StepS)
+		default:
+			f, err = BandPass(want.Order, want.CornerHz, want.HighHz, r.StepS)
 		}
-		f, err := design(want.Order, want.CornerHz, r.StepS)
 		if err != nil {
 			t.Fatal(err)
 		}

@@ -52,6 +52,15 @@ for kind, corner in [("lowpass", 20.0), ("highpass", 1.0), ("highpass", 0.1)]:
             "kind": kind, "corner_hz": corner, "order": order, "filtered": two_way(sos, x).tolist(),
             "frequencies_hz": frequencies, "gain": (abs(response) ** 2).tolist(),
         })
+for low, high in [(1.0, 20.0), (0.1, 25.0), (4.0, 5.0)]:
+    for order in (1, 2, 3, 4, 8):
+        sos = signal.butter(order, [low, high], btype="bandpass", fs=1 / STEP_S, output="sos")
+        frequencies = [0.05, 0.3, 2.0, 4.5, 17.0, 41.0]
+        _, response = signal.sosfreqz(sos, worN=frequencies, fs=1 / STEP_S)
+        filters.append({
+            "kind": "bandpass", "corner_hz": low, "high_hz": high, "order": order, "filtered": two_way(sos, x).tolist(),
+            "frequencies_hz": frequencies, "gain": (abs(response) ** 2).tolist(),
+        })
 t = np.arange(N, dtype=float)
 trends = [{"degree": d, "rest": (x - np.polyval(np.polyfit(t, x, d), t)).tolist()} for d in (0, 1, 2)]
 resampled = []
