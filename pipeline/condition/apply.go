@@ -127,6 +127,8 @@ func (w *work) do(s Step) error {
 		w.check(s)
 	case KindHighPass:
 		return w.highPass(s)
+	case KindBandPass:
+		return w.bandPass(s)
 	case KindLowPass:
 		return w.lowPass(s)
 	}
@@ -196,10 +198,15 @@ func (w *work) highPass(s Step) error {
 	if corner == 0 {
 		return nil
 	}
+	return w.passAbove(s.Order, corner)
+}
+
+// passAbove filters no lower than the header says: what is below is gone.
+func (w *work) passAbove(order int, corner float64) error {
 	if w.LowCutHz > corner {
-		corner = w.LowCutHz // what is below is gone
+		corner = w.LowCutHz
 	}
-	f, err := signal.HighPass(s.Order, corner, w.StepS)
+	f, err := signal.HighPass(order, corner, w.StepS)
 	if err != nil {
 		return err
 	}
@@ -208,11 +215,28 @@ func (w *work) highPass(s Step) error {
 	return nil
 }
 
-// lowPass leaves a motion alone that has nothing above the corner: one whose header
-// states a lower one, or whose sampling is too coarse.
+// bandPass is a high-pass filter where the motion has nothing above the band.
+func (w *work) bandPass(s Step) error {
+	if !w.hasAbove(s.HighHz) {
+		return w.passAbove(s.Order, s.LowHz)
+	}
+	low := s.LowHz
+	if w.LowCutHz > low {
+		low = w.LowCutHz
+	}
+	f, err := signal.BandPass(s.Order, low, s.HighHz, w.StepS)
+	if err != nil {
+		return err
+	}
+	w.filter(f)
+	w.LowCutHz, w.HighCutHz, w.highPassed = low, s.HighHz, true
+	return nil
+}
+
+// lowPass leaves a motion alone that has nothing above the corner.
 func (w *work) lowPass(s Step) error {
 	corner := w.cornerOf(s, ratios.highCorner)
-	if corner == 0 || corner >= w.HighCutHz || corner >= 0.5/w.StepS*maxNyquistShare {
+	if corner == 0 || !w.hasAbove(corner) {
 		return nil
 	}
 	f, err := signal.LowPass(s.Order, corner, w.StepS)
@@ -222,6 +246,12 @@ func (w *work) lowPass(s Step) error {
 	w.filter(f)
 	w.HighCutHz = corner
 	return nil
+}
+
+// hasAbove reports whether the motion has anything above the corner in Hz: no header states
+// a lower one, and its sampling is fine enough.
+func (w *work) hasAbove(corner float64) bool {
+	return !(corner >= w.HighCutHz) && corner < 0.5/w.StepS*maxNyquistShare
 }
 
 // maxNyquistShare is the share of half the sampling rate from which on a low-pass

@@ -153,7 +153,7 @@ func raw(x []float64, stepS float64) Component {
 func TestFiltersShiftNothing(t *testing.T) {
 	x := make([]float64, 401)
 	x[200] = 1
-	for _, s := range []Step{{Do: KindHighPass, Order: 2, CornerHz: 1}, {Do: KindLowPass, Order: 3, CornerHz: 10}} {
+	for _, s := range []Step{{Do: KindHighPass, Order: 2, CornerHz: 1}, {Do: KindLowPass, Order: 3, CornerHz: 10}, {Do: KindBandPass, Order: 3, LowHz: 1, HighHz: 10}} {
 		got, err := step(s).Apply(raw(x, 0.01))
 		if err != nil {
 			t.Fatal(err)
@@ -186,6 +186,10 @@ func TestHeaderCorners(t *testing.T) {
 		{Step{Do: KindLowPass, Order: 2, CornerHz: 30}, unknown, 20, unknown, 20},
 		{Step{Do: KindLowPass, Order: 2, CornerHz: 15}, unknown, 20, unknown, 15},
 		{Step{Do: KindLowPass, Order: 2, CornerHz: 45}, unknown, unknown, unknown, unknown}, // 0.9 of half the sampling rate
+		{Step{Do: KindBandPass, Order: 2, LowHz: 0.1, HighHz: 25}, unknown, unknown, 0.1, 25},
+		{Step{Do: KindBandPass, Order: 2, LowHz: 0.1, HighHz: 25}, 0.3, 30, 0.3, 25},
+		{Step{Do: KindBandPass, Order: 2, LowHz: 0.1, HighHz: 25}, 0.05, 20, 0.1, 20}, // above is nothing
+		{Step{Do: KindBandPass, Order: 2, LowHz: 0.1, HighHz: 45}, unknown, unknown, 0.1, unknown},
 	} {
 		c := raw(x, 0.01)
 		c.LowCutHz, c.HighCutHz = test.low, test.high
@@ -223,6 +227,29 @@ func TestTrim(t *testing.T) {
 	_, err = step(Step{Do: KindTrim, FromS: 0.96}).Apply(raw(x, 0.01))
 	if err == nil || err.Error() != "step 1 (trim): 5 samples would be left of 101" {
 		t.Errorf("too short: %v", err)
+	}
+}
+
+// Far from both corners a band keeps what there is, and outside it nothing; a band that the
+// header's corner has emptied is refused.
+func TestBandPass(t *testing.T) {
+	const stepS = 0.01
+	s := Step{Do: KindBandPass, Order: 4, LowHz: 0.5, HighHz: 10}
+	for hz, want := range map[float64]float64{0.1: 0, 2: 1, 40: 0} {
+		x := make([]float64, 8000)
+		for i := range x {
+			x[i] = math.Sin(2 * math.Pi * hz * float64(i) * stepS)
+		}
+		signal.Taper(x, 2000, 2000)
+		got, err := step(s).Apply(raw(x, stepS))
+		if err != nil || math.Abs(signal.Greatest(got.Acceleration)-want) > 0.003 {
+			t.Errorf("%g Hz: %g is left, want %g, %v", hz, signal.Greatest(got.Acceleration), want, err)
+		}
+	}
+	c := raw(make([]float64, 100), stepS)
+	c.LowCutHz = 12
+	if _, err := step(s).Apply(c); err == nil || err.Error() != "step 1 (band-pass): corner of 12 Hz is not below 10 Hz" {
+		t.Errorf("empty band: %v", err)
 	}
 }
 

@@ -23,6 +23,7 @@ const (
 	KindPad        Kind = "pad"               // zeros over BeforeS and AfterS
 	KindHighPass   Kind = "high-pass"         // acausal Butterworth filter
 	KindLowPass    Kind = "low-pass"          // acausal Butterworth filter
+	KindBandPass   Kind = "band-pass"         // acausal Butterworth filter
 	KindOversample Kind = "oversample"        // band-limited samples on a step Factor times finer
 	KindCheck      Kind = "integration-check" // changes nothing, notes what VelocityShare and DisplacementShare do not allow
 )
@@ -48,6 +49,8 @@ type Step struct {
 	AfterS   float64    `json:"after_s,omitempty" toml:"after_s"`
 	Order    int        `json:"order,omitempty" toml:"order"` // of one of both passages
 	CornerHz float64    `json:"corner_hz,omitempty" toml:"corner_hz"`
+	LowHz    float64    `json:"low_hz,omitempty" toml:"low_hz"`
+	HighHz   float64    `json:"high_hz,omitempty" toml:"high_hz"`
 	ByNoise  *NoiseRule `json:"by_noise,omitempty" toml:"by_noise"`
 	Factor   int        `json:"factor,omitempty" toml:"factor"`
 	// VelocityShare of PGV and DisplacementShare of PGD are what may be left at the end;
@@ -71,14 +74,14 @@ type NoiseRule struct {
 // uses are the fields that a kind of step takes.
 var uses = map[Kind][]string{
 	KindMean: {"window"}, KindTrend: {"degree"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"}, KindPad: {"before_s", "after_s"},
-	KindHighPass: {"order", "corner_hz", "by_noise"}, KindLowPass: {"order", "corner_hz", "by_noise"}, KindOversample: {"factor"},
+	KindHighPass: {"order", "corner_hz", "by_noise"}, KindLowPass: {"order", "corner_hz", "by_noise"}, KindBandPass: {"order", "low_hz", "high_hz"}, KindOversample: {"factor"},
 	KindCheck: {"velocity_share", "displacement_share"},
 }
 
 func (s Step) validate() error {
 	fields, ok := uses[s.Do]
 	if !ok {
-		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, pad, high-pass, low-pass, oversample, integration-check")
+		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, pad, high-pass, low-pass, band-pass, oversample, integration-check")
 	}
 	set := s.set()
 	for _, name := range slices.Sorted(maps.Keys(set)) {
@@ -99,6 +102,8 @@ func (s Step) validate() error {
 		return s.validatePad()
 	case KindOversample:
 		return within("factor", float64(s.Factor), 2, maxFactor)
+	case KindBandPass:
+		return s.validateBand()
 	case KindCheck:
 		return s.validateCheck()
 	}
@@ -143,19 +148,33 @@ func (s Step) validateFilter() error {
 		return errors.New("corner_hz, by_noise: one of both is needed")
 	}
 	if s.ByNoise == nil {
-		return within("corner_hz", s.CornerHz, leastCornerHz, 1000)
+		return within("corner_hz", s.CornerHz, leastCornerHz, maxCornerHz)
 	}
 	n := s.ByNoise
-	if err := errors.Join(within("by_noise.ratio", n.Ratio, 1, 100), within("by_noise.least_hz", n.LeastHz, leastCornerHz, 1000)); err != nil {
+	if err := errors.Join(within("by_noise.ratio", n.Ratio, 1, 100), within("by_noise.least_hz", n.LeastHz, leastCornerHz, maxCornerHz)); err != nil {
 		return err
 	}
 	if n.ElseHz != 0 {
-		if err := within("by_noise.else_hz", n.ElseHz, leastCornerHz, 1000); err != nil {
+		if err := within("by_noise.else_hz", n.ElseHz, leastCornerHz, maxCornerHz); err != nil {
 			return err
 		}
 	}
-	return within("by_noise.most_hz", n.MostHz, n.LeastHz, 1000)
+	return within("by_noise.most_hz", n.MostHz, n.LeastHz, maxCornerHz)
 }
+
+func (s Step) validateBand() error {
+	err := errors.Join(
+		within("order", float64(s.Order), 1, signal.MaxOrder),
+		within("low_hz", s.LowHz, leastCornerHz, maxCornerHz), within("high_hz", s.HighHz, leastCornerHz, maxCornerHz),
+	)
+	if err == nil && !(s.HighHz > s.LowHz) {
+		err = fmt.Errorf("high_hz: %g Hz is not above low_hz", s.HighHz)
+	}
+	return err
+}
+
+// maxCornerHz is half the finest sampling rate that is read.
+const maxCornerHz = 1000
 
 // leastCornerHz bounds the length of pads.
 const leastCornerHz = 0.01
@@ -164,7 +183,7 @@ func (s Step) set() map[string]bool {
 	return map[string]bool{
 		"window": s.Window != "", "degree": s.Degree != 0, "share": s.Share != 0, "from_s": s.FromS != 0, "to_s": s.ToS != 0,
 		"before_s": s.BeforeS != 0, "after_s": s.AfterS != 0,
-		"order": s.Order != 0, "corner_hz": s.CornerHz != 0, "by_noise": s.ByNoise != nil, "factor": s.Factor != 0,
+		"order": s.Order != 0, "corner_hz": s.CornerHz != 0, "low_hz": s.LowHz != 0, "high_hz": s.HighHz != 0, "by_noise": s.ByNoise != nil, "factor": s.Factor != 0,
 		"velocity_share": s.VelocityShare != 0, "displacement_share": s.DisplacementShare != 0,
 	}
 }

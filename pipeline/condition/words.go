@@ -26,6 +26,8 @@ func (s Step) Words() string {
 		return fmt.Sprintf("zeros for at least %g s before and %g s after, which stay", s.BeforeS, s.AfterS)
 	case KindOversample:
 		return fmt.Sprintf("band-limited samples at steps %d times finer", s.Factor)
+	case KindBandPass:
+		return fmt.Sprintf("Butterworth, order %d forward and again backward, corners %g and %g Hz", s.Order, s.LowHz, s.HighHz)
 	case KindCheck:
 		return s.checkWords()
 	}
