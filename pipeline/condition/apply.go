@@ -110,9 +110,9 @@ func (w *work) recorded() []float64 {
 func (w *work) do(s Step) error {
 	switch s.Do {
 	case KindMean:
-		w.takeMean(s.Window)
+		return w.takeOff(s, 0)
 	case KindTrend:
-		signal.Detrend(w.recorded(), s.Degree)
+		return w.takeOff(s, s.Degree)
 	case KindTaper:
 		n := int(s.Share * float64(len(w.recorded())))
 		signal.Taper(w.recorded(), n, n)
@@ -135,13 +135,23 @@ func (w *work) do(s Step) error {
 	return nil
 }
 
-func (w *work) takeMean(window Window) {
+// takeOff takes off the polynomial that fits the step's window best.
+func (w *work) takeOff(s Step, degree int) error {
 	x := w.recorded()
-	part := x
-	if n := quietSamples(x, w.StepS); window == WindowPreEvent && n > 0 {
-		part = x[:n]
+	from, to := 0, len(x)
+	switch s.Window {
+	case WindowPreEvent:
+		if n := quietSamples(x, w.StepS); n > 0 {
+			to = n
+		}
+	case WindowStated:
+		from, to = int(math.Round(s.FromS/w.StepS)), int(math.Round(s.ToS/w.StepS))+1
+		if to > len(x) || to-from < leastSamples {
+			return fmt.Errorf("the window takes samples %d to %d of %d, which must be there and %d at least", from+1, to, len(x), leastSamples)
+		}
 	}
-	signal.Subtract(x, signal.Mean(part))
+	signal.DetrendBy(x, from, to, degree)
+	return nil
 }
 
 // samplesOf is the number of steps that cover the time in s; rounding makes none more.
@@ -165,7 +175,7 @@ func (w *work) trim(fromS, toS float64) error {
 	return nil
 }
 
-// leastSamples is the shortest motion that a trim leaves.
+// leastSamples is the shortest motion that a trim leaves, and the shortest window stated.
 const leastSamples = 10
 
 func (w *work) oversample(factor int) {

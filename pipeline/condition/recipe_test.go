@@ -89,7 +89,7 @@ func TestParseRefuses(t *testing.T) {
 	for text, want := range map[string]string{
 		"name = 3":                                   "line 1: ",
 		"name = \"own\"\nnane = 1":                   `line 2: unknown key "nane"`,
-		head + "do = \"mean\"\nwindow = \"all\"":     `line 2: step 1 (mean): window: unknown word "all"; known: whole, pre-event`,
+		head + "do = \"mean\"\nwindow = \"all\"":     `line 2: step 1 (mean): window: unknown word "all"; known: whole, pre-event, stated`,
 		head + "do = \"bake\"":                       "line 2: step 1 (bake): do: unknown step; known: mean, trend,",
 		head + "do = \"trend\"\ndegree = 3":          "line 2: step 1 (trend): degree: 3 is outside 1 to 2",
 		head + "do = \"trend\"\ndegree = 1\nshare=1": "line 2: step 1 (trend): share: not a field of this step; it takes degree",
@@ -105,6 +105,9 @@ func TestParseRefuses(t *testing.T) {
 		head + "do = \"integration-check\"\nvelocity_share = 2":         "line 2: step 1 (integration-check): velocity_share: 2 is outside 0 to 1",
 		head + "do = \"band-pass\"\norder = 4\nlow_hz = 5\nhigh_hz = 5": "line 2: step 1 (band-pass): high_hz: 5 Hz is not above low_hz",
 		head + "do = \"band-pass\"\norder = 4\ncorner_hz = 5":           "line 2: step 1 (band-pass): corner_hz: not a field of this step; it takes order, low_hz, high_hz",
+		head + "do = \"mean\"\nwindow = \"stated\"":                     "line 2: step 1 (mean): to_s: missing",
+		head + "do = \"mean\"\nwindow = \"whole\"\nto_s = 3":            `line 2: step 1 (mean): from_s, to_s: of window = "stated" only, not "whole"`,
+		head + "do = \"trend\"\nwindow = \"pre-event\"\ndegree = 2":     "line 2: step 1 (trend): degree: 2 is outside 1 to 1",
 		"name = \"Own recipe\"":                                         "name: ",
 		"name = \"standard\"":                                           `name: "standard" is a recipe that is built in`,
 		"name = \"own\"\nstates = [\"fresh\"]":                          `states: unknown state of processing "fresh"; known: raw,`,
@@ -157,4 +160,23 @@ func FuzzParse(f *testing.F) {
 			t.Fatalf("%q gives %s, which reads as %s: %v", text, r.Canonical(), fmt.Sprint(back), err)
 		}
 	})
+}
+
+// Every kind of step has words of its own, and the list of unknown steps names it.
+func TestEveryStepIsExplained(t *testing.T) {
+	seen := map[string]Kind{}
+	for kind := range uses {
+		s := Step{Do: kind, Degree: 1, Order: 4, CornerHz: 1, LowHz: 1, HighHz: 2, Factor: 2, ToS: 3, VelocityShare: 0.1}
+		words := s.Words()
+		if kind == KindHighPass || kind == KindLowPass {
+			words = string(kind) + words // a filter is told by its name
+		}
+		if other, ok := seen[words]; ok || words == "" {
+			t.Errorf("%s: %q, as %s", kind, words, other)
+		}
+		seen[words] = kind
+		if err := (Step{Do: "bake"}).validate(); !strings.Contains(err.Error(), string(kind)) {
+			t.Errorf("%s is not named: %v", kind, err)
+		}
+	}
 }

@@ -16,8 +16,8 @@ type Kind string
 
 // The kinds of steps.
 const (
-	KindMean       Kind = "mean"              // takes off the mean of Window
-	KindTrend      Kind = "trend"             // takes off the polynomial of Degree that fits best
+	KindMean       Kind = "mean"              // takes off the mean of Window, or of FromS to ToS
+	KindTrend      Kind = "trend"             // takes off the polynomial of Degree that fits Window, or FromS to ToS, best
 	KindTaper      Kind = "taper"             // cosine bells over Share of the length at either end
 	KindTrim       Kind = "trim"              // keeps what lies from FromS to ToS
 	KindPad        Kind = "pad"               // zeros over BeforeS and AfterS
@@ -35,6 +35,7 @@ type Window string
 const (
 	WindowWhole    Window = "whole"
 	WindowPreEvent Window = "pre-event" // before the onset, the whole where there is too little
+	WindowStated   Window = "stated"    // from FromS to ToS, counted from the first sample
 )
 
 // Step is one step. Fields that its kind does not use are zero.
@@ -73,7 +74,7 @@ type NoiseRule struct {
 
 // uses are the fields that a kind of step takes.
 var uses = map[Kind][]string{
-	KindMean: {"window"}, KindTrend: {"degree"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"}, KindPad: {"before_s", "after_s"},
+	KindMean: {"window", "from_s", "to_s"}, KindTrend: {"degree", "window", "from_s", "to_s"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"}, KindPad: {"before_s", "after_s"},
 	KindHighPass: {"order", "corner_hz", "by_noise"}, KindLowPass: {"order", "corner_hz", "by_noise"}, KindBandPass: {"order", "low_hz", "high_hz"}, KindOversample: {"factor"},
 	KindCheck: {"velocity_share", "displacement_share"},
 }
@@ -91,9 +92,9 @@ func (s Step) validate() error {
 	}
 	switch s.Do {
 	case KindMean:
-		return oneOf("window", s.Window, WindowWhole, WindowPreEvent)
+		return s.validateWindow()
 	case KindTrend:
-		return within("degree", float64(s.Degree), 1, signal.MaxDegree)
+		return s.validateTrend()
 	case KindTaper:
 		return within("share", s.Share, 0.001, 0.5)
 	case KindTrim:
@@ -108,6 +109,31 @@ func (s Step) validate() error {
 		return s.validateCheck()
 	}
 	return s.validateFilter()
+}
+
+func (s Step) validateWindow() error {
+	if err := oneOf("window", s.Window, WindowWhole, WindowPreEvent, WindowStated); err != nil {
+		return err
+	}
+	if s.Window == WindowStated {
+		if s.ToS == 0 {
+			return errors.New("to_s: missing")
+		}
+		return s.validateTrim()
+	}
+	if s.FromS != 0 || s.ToS != 0 {
+		return fmt.Errorf(`from_s, to_s: of window = "stated" only, not %q`, s.Window)
+	}
+	return nil
+}
+
+// validateTrend lets no parabola be continued: it would run away.
+func (s Step) validateTrend() error {
+	if s.Window == "" || s.Window == WindowWhole {
+		s.Window = WindowWhole
+		return errors.Join(s.validateWindow(), within("degree", float64(s.Degree), 1, signal.MaxDegree))
+	}
+	return errors.Join(s.validateWindow(), within("degree", float64(s.Degree), 1, 1))
 }
 
 // maxFactor bounds how much finer steps become, by one step of a recipe and by all.

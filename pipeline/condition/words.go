@@ -9,12 +9,9 @@ import (
 func (s Step) Words() string {
 	switch s.Do {
 	case KindMean:
-		if s.Window == WindowPreEvent {
-			return "takes off the mean of what precedes the motion, of the whole where that is shorter than 2 s"
-		}
-		return "takes off the mean"
+		return "takes off the mean" + s.windowWords(" of ")
 	case KindTrend:
-		return "takes off the " + [...]string{"", "straight line", "parabola"}[s.Degree] + " that fits best"
+		return "takes off the " + [...]string{"", "straight line", "parabola"}[s.Degree] + " that fits" + s.windowWords(" ") + " best"
 	case KindTaper:
 		return fmt.Sprintf("cosine bells over %g %% of the length at either end", 100*s.Share)
 	case KindTrim:
@@ -32,6 +29,17 @@ func (s Step) Words() string {
 		return s.checkWords()
 	}
 	return s.filterWords()
+}
+
+// windowWords name the window, behind a word, nothing for the whole.
+func (s Step) windowWords(behind string) string {
+	switch s.Window {
+	case WindowPreEvent:
+		return behind + "what precedes the motion (the whole where that is shorter than 2 s)"
+	case WindowStated:
+		return behind + fmt.Sprintf("%g to %g s", s.FromS, s.ToS)
+	}
+	return ""
 }
 
 func (s Step) checkWords() string {
