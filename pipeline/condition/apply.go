@@ -113,6 +113,8 @@ func (w *work) do(s Step) error {
 		return w.takeOff(s, 0)
 	case KindTrend:
 		return w.takeOff(s, s.Degree)
+	case KindOffset:
+		w.takeOffset(s)
 	case KindTaper:
 		n := int(s.Share * float64(len(w.recorded())))
 		signal.Taper(w.recorded(), n, n)

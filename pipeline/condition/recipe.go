@@ -46,8 +46,9 @@ func AsDelivered() Recipe {
 func Standard() Recipe {
 	return Recipe{
 		Name: "standard", States: []string{"raw", "mean-removed"}, LongShare: 0.6,
-		Explain: "raw components: parabolic trend, tapers, high-pass and low-pass filter with corners by signal to noise; others as delivered",
+		Explain: "raw components: a step of the baseline, parabolic trend, tapers, high-pass and low-pass filter with corners by signal to noise; others as delivered",
 		Steps: []Step{
+			{Do: KindOffset, Share: 0.005},
 			{Do: KindTrend, Degree: 2},
 			{Do: KindTaper, Share: 0.02},
 			{Do: KindHighPass, Order: 4, ByNoise: &NoiseRule{Ratio: 3, LeastHz: 0.05, MostHz: 1, ElseHz: 0.1}},

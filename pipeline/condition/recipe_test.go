@@ -78,7 +78,7 @@ func TestHashes(t *testing.T) {
 		t.Error("words for people change the hash")
 	}
 	other := Standard()
-	other.Steps[1].Share *= 2
+	other.Steps[2].Share *= 2
 	if other.Hash() == Standard().Hash() {
 		t.Error("another taper has the same hash")
 	}

@@ -18,6 +18,7 @@ type Kind string
 const (
 	KindMean       Kind = "mean"              // takes off the mean of Window, or of FromS to ToS
 	KindTrend      Kind = "trend"             // takes off the polynomial of Degree that fits Window, or FromS to ToS, best
+	KindOffset     Kind = "offset"            // takes off a step of the baseline of at least Share of PGA
 	KindTaper      Kind = "taper"             // cosine bells over Share of the length at either end
 	KindTrim       Kind = "trim"              // keeps what lies from FromS to ToS
 	KindPad        Kind = "pad"               // zeros over BeforeS and AfterS
@@ -74,7 +75,7 @@ type NoiseRule struct {
 
 // uses are the fields that a kind of step takes.
 var uses = map[Kind][]string{
-	KindMean: {"window", "from_s", "to_s"}, KindTrend: {"degree", "window", "from_s", "to_s"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"}, KindPad: {"before_s", "after_s"},
+	KindMean: {"window", "from_s", "to_s"}, KindTrend: {"degree", "window", "from_s", "to_s"}, KindOffset: {"share"}, KindTaper: {"share"}, KindTrim: {"from_s", "to_s"}, KindPad: {"before_s", "after_s"},
 	KindHighPass: {"order", "corner_hz", "by_noise"}, KindLowPass: {"order", "corner_hz", "by_noise"}, KindBandPass: {"order", "low_hz", "high_hz"}, KindOversample: {"factor"},
 	KindCheck: {"velocity_share", "displacement_share"},
 }
@@ -82,7 +83,7 @@ var uses = map[Kind][]string{
 func (s Step) validate() error {
 	fields, ok := uses[s.Do]
 	if !ok {
-		return fmt.Errorf("do: unknown step; known: mean, trend, taper, trim, pad, high-pass, low-pass, band-pass, oversample, integration-check")
+		return fmt.Errorf("do: unknown step; known: mean, trend, offset, taper, trim, pad, high-pass, low-pass, band-pass, oversample, integration-check")
 	}
 	set := s.set()
 	for _, name := range slices.Sorted(maps.Keys(set)) {
@@ -95,6 +96,8 @@ func (s Step) validate() error {
 		return s.validateWindow()
 	case KindTrend:
 		return s.validateTrend()
+	case KindOffset:
+		return within("share", s.Share, 0.001, 1)
 	case KindTaper:
 		return within("share", s.Share, 0.001, 0.5)
 	case KindTrim:

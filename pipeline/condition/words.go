@@ -12,6 +12,8 @@ func (s Step) Words() string {
 		return "takes off the mean" + s.windowWords(" of ")
 	case KindTrend:
 		return "takes off the " + [...]string{"", "straight line", "parabola"}[s.Degree] + " that fits" + s.windowWords(" ") + " best"
+	case KindOffset:
+		return fmt.Sprintf("takes off a step of the baseline of %g %% of PGA or more", 100*s.Share)
 	case KindTaper:
 		return fmt.Sprintf("cosine bells over %g %% of the length at either end", 100*s.Share)
 	case KindTrim:

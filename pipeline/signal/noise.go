@@ -110,15 +110,35 @@ const arrivalCornerHz = 1.0
 // Arrival is the Onset of a motion x in which slow changes do not count: behind a causal
 // high-pass filter of first order at 1 Hz, or at a fifth of half the sampling rate where
 // that is lower. x is not empty.
-func Arrival(x []float64, stepS float64) int {
+func Arrival(x []float64, stepS float64) int { return Onset(quick(x, stepS)) }
+
+// quick is what x has besides slow changes.
+func quick(x []float64, stepS float64) []float64 {
+	y := append([]float64(nil), x...)
 	f, err := HighPass(1, min(arrivalCornerHz, 0.1/stepS), stepS)
 	if err != nil {
-		return 0
+		return y
 	}
-	y := append([]float64(nil), x...)
 	Subtract(y, y[0])
 	f.OneWay(y)
-	return Onset(y)
+	return y
+}
+
+// EndOf is the sample up to which a motion x has a share of its squares, slow changes left
+// out as for Arrival. x is not empty.
+func EndOf(x []float64, stepS, share float64) int {
+	y := quick(x, stepS)
+	all := 0.0
+	for _, v := range y {
+		all += float64(v * v)
+	}
+	sum := 0.0
+	for i, v := range y {
+		if sum += float64(v * v); sum >= share*all {
+			return i
+		}
+	}
+	return len(x)
 }
 
 // variances are those of x[:k], by k, in one pass.
