@@ -210,10 +210,10 @@ func TestAnotherSolversStoreIsNotMigrated(t *testing.T) {
 	}
 }
 
-// The migration that gave recipes their canonical form wrote that of the one recipe there
-// was, with its hash.
+// The migration that came with the version of the steps wrote the canonical form of the one
+// recipe that has none, with its hash.
 func TestAsDeliveredIsWhatTheMigrationWrote(t *testing.T) {
-	step, err := migrations.FS.ReadFile("00003_condition_components.sql")
+	step, err := migrations.FS.ReadFile("00006_renew_recipes.sql")
 	if err != nil {
 		t.Fatal(err)
 	}

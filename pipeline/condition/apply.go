@@ -78,8 +78,8 @@ type work struct {
 	before, after int
 	// keepBefore and keepAfter of them are there because a step asks for them.
 	keepBefore, keepAfter int
-	// noise is how far the motion stands out, by frequency, once a step has asked. A
-	// filter changes motion and noise alike.
+	// noise is how far the motion stands out, by frequency, once a step has asked, until a
+	// step changes motion and noise otherwise than filters do, which change both alike.
 	noise    ratios
 	hasNoise bool
 	asked    bool
@@ -93,7 +93,7 @@ func (w *work) cornerOf(s Step, choose func(ratios, NoiseRule) float64) float64 
 		return s.CornerHz
 	}
 	if !w.asked {
-		w.noise, w.hasNoise = ratiosOf(w.recorded(), w.StepS)
+		w.noise, w.hasNoise = ratiosOf(w.recorded(), w.StepS, w.nyquist())
 		w.asked = true
 	}
 	if !w.hasNoise {
@@ -107,7 +107,15 @@ func (w *work) recorded() []float64 {
 	return w.Acceleration[w.before : len(w.Acceleration)-w.after]
 }
 
+// nyquist is half the sampling rate in Hz as delivered: a finer step brings nothing above it.
+func (w *work) nyquist() float64 { return 0.5 / (w.StepS * float64(w.Oversampled)) }
+
 func (w *work) do(s Step) error {
+	switch s.Do {
+	case KindHighPass, KindLowPass, KindBandPass, KindPad, KindCheck:
+	default:
+		w.asked = false
+	}
 	switch s.Do {
 	case KindMean:
 		return w.takeOff(s, 0)
@@ -263,7 +271,7 @@ func (w *work) lowPass(s Step) error {
 // hasAbove reports whether the motion has anything above the corner in Hz: no header states
 // a lower one, and its sampling is fine enough.
 func (w *work) hasAbove(corner float64) bool {
-	return !(corner >= w.HighCutHz) && corner < 0.5/w.StepS*maxNyquistShare
+	return !(corner >= w.HighCutHz) && corner < w.nyquist()*maxNyquistShare
 }
 
 // maxNyquistShare is the share of half the sampling rate from which on a low-pass

@@ -30,20 +30,20 @@ func quietSamples(x []float64, stepS float64) int {
 }
 
 // ratios are the amplitudes of motion over noise, each for its length, at frequencies
-// that rise by equal factors up to half the sampling rate.
+// that rise by equal factors up to half the sampling rate as delivered.
 type ratios struct {
 	frequencyHz, ratio []float64
 	strongest          int // where the smoothed motion has its greatest amplitude
 }
 
 // ratiosOf begins at leastCornerHz, or at the lowest frequency of which the noise holds a
-// cycle, where that is higher. ok is false without noise to compare with.
-func ratiosOf(x []float64, stepS float64) (r ratios, ok bool) {
+// cycle, where that is higher, and ends at nyquist in Hz, above which x has nothing. ok is
+// false without noise to compare with.
+func ratiosOf(x []float64, stepS, nyquist float64) (r ratios, ok bool) {
 	quiet := quietSamples(x, stepS)
 	if quiet == 0 {
 		return r, false
 	}
-	nyquist := 0.5 / stepS
 	fromHz := min(max(leastCornerHz, 1/(float64(quiet)*stepS)), nyquist/2)
 	steps := int(math.Ceil(cornersADecade * math.Log10(nyquist/fromHz)))
 	for k := range steps + 1 {
