@@ -231,11 +231,12 @@ func (t *Tx) forgetTurned(ctx context.Context, componentID int64, azimuthDeg *fl
 
 // forgetConditioned removes what was computed of the component behind the steps of a
 // recipe, and of its record's horizontals, where a corner that is known is not the stored
-// one.
+// one. A recipe that failed on it is tried again.
 func (t *Tx) forgetConditioned(ctx context.Context, componentID int64, lowCutHz, highCutHz *float64) error {
 	rows, err := t.tx.QueryContext(ctx, `SELECT c.record_id, c.role FROM component c WHERE c.id = ?1
 		AND (coalesce(?2, c.low_cut_hz) IS NOT c.low_cut_hz OR coalesce(?3, c.high_cut_hz) IS NOT c.high_cut_hz)
-		AND EXISTS (SELECT 1 FROM conditioning k WHERE k.record_id = c.record_id AND k.role = c.role)`, componentID, lowCutHz, highCutHz)
+		AND (EXISTS (SELECT 1 FROM conditioning k WHERE k.record_id = c.record_id AND k.role = c.role)
+			OR EXISTS (SELECT 1 FROM failure f WHERE f.record_id = c.record_id AND f.role = c.role))`, componentID, lowCutHz, highCutHz)
 	if err != nil {
 		return fmt.Errorf("describe component: %w", err)
 	}
@@ -244,6 +245,9 @@ func (t *Tx) forgetConditioned(ctx context.Context, componentID int64, lowCutHz,
 		return fmt.Errorf("describe component: %w", err)
 	}
 	for _, c := range changed {
+		if err := t.exec(ctx, `DELETE FROM failure WHERE record_id = ? AND role = ?`, c.record, c.role); err != nil {
+			return fmt.Errorf("forget failure: %w", err)
+		}
 		// The conditioning goes last: it names the generations.
 		for _, table := range computedTables {
 			err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ?1 AND role = ?2 AND generation_id IN

@@ -162,9 +162,10 @@ func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Mot
 	return m.DecodeMotion()
 }
 
-// Rejections returns what could not be stored, ordered by path and line.
+// Rejections returns what could not be stored, and what is stored and could not be
+// conditioned by the published recipe, ordered by path and line.
 func (s *Store) Rejections(ctx context.Context) ([]Rejection, error) {
-	return rejections(ctx, s.read, "")
+	return rejections(ctx, s.read, "UNION ALL "+failures)
 }
 
 func rejections(ctx context.Context, q queryer, where string, args ...any) ([]Rejection, error) {

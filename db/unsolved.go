@@ -5,21 +5,23 @@ import (
 	"fmt"
 )
 
-// Unsolved is a component without a spectrum in a generation.
+// Unsolved is a component without a spectrum in a generation. Failure says why that cannot
+// be had, "" where nobody knows that it cannot.
 type Unsolved struct {
 	ComponentID, RecordID int64
 	Code                  string // the record's
 	Role                  string
+	Failure               string
 }
 
-// Unsolved returns the components that lack their spectra in the generation, in the
-// order in which they were stored.
+// Unsolved returns the components that lack their spectra in the generation and are not
+// known to fail, in the order in which they were stored.
 func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, error) {
-	return unsolved(ctx, s.read, generationID, "")
+	return unsolved(ctx, s.read, generationID, "AND f.reason IS NULL")
 }
 
-// Unsolved is Store.Unsolved of the snapshot's generation. It counts first, since as a
-// rule there are none.
+// Unsolved returns all components that lack their spectra in the snapshot's generation. It
+// counts first, since as a rule there are none.
 func (s *Snapshot) Unsolved(ctx context.Context) ([]Unsolved, error) {
 	var components, spectra int
 	err := s.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM component),
@@ -41,13 +43,14 @@ func (t *Tx) IsUnsolved(ctx context.Context, generationID int64, u Unsolved) (bo
 // unsolved looks for each component's spectrum of the first damping: all dampings are
 // stored in one transaction.
 func unsolved(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Unsolved, error) {
-	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role FROM component c JOIN record r ON r.id = c.record_id
+	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, coalesce(f.reason, '') FROM component c JOIN record r ON r.id = c.record_id
+		LEFT JOIN failure f ON f.generation_id = ? AND f.record_id = c.record_id AND f.role = c.role
 		WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.generation_id = ? AND s.damping_position = 0
-			AND s.role = c.role AND s.record_id = c.record_id) `+condition+` ORDER BY c.id`, append([]any{generationID}, args...)...)
+			AND s.role = c.role AND s.record_id = c.record_id) `+condition+` ORDER BY c.id`, append([]any{generationID, generationID}, args...)...)
 	if err != nil {
 		return nil, fmt.Errorf("find components without spectrum: %w", err)
 	}
-	found, err := collect(rows, func(u *Unsolved) []any { return []any{&u.ComponentID, &u.RecordID, &u.Code, &u.Role} })
+	found, err := collect(rows, func(u *Unsolved) []any { return []any{&u.ComponentID, &u.RecordID, &u.Code, &u.Role, &u.Failure} })
 	if err != nil {
 		return nil, fmt.Errorf("find components without spectrum: %w", err)
 	}
@@ -76,4 +79,4 @@ func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, comp
 }
 
 // computedTables hold what is computed of a record's roles in a generation.
-var computedTables = []string{"spectrum", "measure", "conditioned_finding", "conditioning"}
+var computedTables = []string{"spectrum", "measure", "failure", "conditioned_finding", "conditioning"}

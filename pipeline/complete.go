@@ -2,6 +2,7 @@ package pipeline
 
 import (
 	"context"
+	"errors"
 	"slices"
 
 	"swaybook/db"
@@ -19,7 +20,8 @@ type Recomputed struct {
 // complete computes the spectra of held components that the generation lacks, from the
 // stored samples: all of them where a recipe is new to the store, and those of a run
 // that was stopped, or that served another recipe. A component that cannot be solved is
-// reported and left alone.
+// reported, and tried again only under another recipe or version of the steps, or where
+// the store is damaged.
 func (w *writer) complete(ctx context.Context) error {
 	lacking, err := w.store.Unsolved(ctx, w.run.generation.ID)
 	if err != nil || len(lacking) == 0 {
@@ -65,12 +67,9 @@ func (c *completer) process(ctx context.Context, u db.Unsolved) (completed, erro
 func (c *completer) storeBatch(ctx context.Context, batch []completed) error {
 	err := c.store.Update(ctx, func(tx *db.Tx) error {
 		for _, done := range batch {
-			if done.err != nil {
-				continue
-			}
 			current, err := tx.IsUnsolved(ctx, c.run.generation.ID, done.component)
 			if err == nil && current {
-				err = tx.AddSolved(ctx, done.component, c.run.generation.ID, done.spectra)
+				err = c.put(ctx, tx, done)
 			}
 			if err != nil {
 				return err
@@ -91,4 +90,15 @@ func (c *completer) storeBatch(ctx context.Context, batch []completed) error {
 		c.opts.Recomputed(report)
 	}
 	return nil
+}
+
+// put stores the spectra, or why there are none. What is damaged in the store may be mended.
+func (c *completer) put(ctx context.Context, tx *db.Tx, done completed) error {
+	switch {
+	case done.err == nil:
+		return tx.AddSolved(ctx, done.component, c.run.generation.ID, done.spectra)
+	case errors.Is(done.err, db.ErrDamaged):
+		return nil
+	}
+	return tx.AddFailure(ctx, done.component, c.run.generation.ID, done.err.Error())
 }

@@ -96,8 +96,8 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	if err == nil {
 		err = w.rotate(ctx)
 	}
-	if err == nil && !w.summary.isFruitless() {
-		err = store.Update(ctx, func(tx *db.Tx) error { return tx.Publish(ctx, run.generation.ID) })
+	if err == nil {
+		err = store.Update(ctx, func(tx *db.Tx) error { return w.publish(ctx, tx) })
 	}
 	return w.finish(ctx, err)
 }

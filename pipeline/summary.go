@@ -43,6 +43,9 @@ type Summary struct {
 	// NotRecomputed those that could not be solved.
 	Recomputed    int `json:"recomputed"`
 	NotRecomputed int `json:"not_recomputed"`
+	// Unconditioned counts the held components on which the run's recipe cannot be carried
+	// out, found by this run or by one before.
+	Unconditioned int `json:"not_conditioned"`
 	// Uncomputed counts those that a run which was stopped did not reach.
 	Uncomputed int `json:"left_to_compute"`
 	// Unrotated counts the pairs left to a later run: all where that was asked for,
@@ -95,9 +98,6 @@ func (s *Summary) addRotated(r Rotated) {
 	}
 	s.Rotated++
 }
-
-// isFruitless reports whether the recipe could be carried out on none of the components.
-func (s Summary) isFruitless() bool { return s.NotRecomputed > 0 && s.Recomputed+s.Stored == 0 }
 
 // HasBegun reports whether the run came to any file, component or record.
 func (s Summary) HasBegun() bool { return s.Files+s.Recomputed+s.Uncomputed+s.Rotated+s.Unrotated > 0 }

@@ -251,6 +251,16 @@ func (w *writer) standing(ctx context.Context, tx *db.Tx) ([]Doubt, error) {
 	return out, nil
 }
 
+// publish makes the run's generation the one that is asked, unless its recipe could be
+// carried out on none of the components.
+func (w *writer) publish(ctx context.Context, tx *db.Tx) error {
+	barren, err := tx.IsBarren(ctx, w.run.generation.ID)
+	if err == nil && !barren {
+		err = tx.Publish(ctx, w.run.generation.ID)
+	}
+	return err
+}
+
 // finish closes the run's entry. The summary counts what was committed.
 func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 	w.summary.Seconds = w.opts.Clock().Sub(w.opts.Started).Seconds()
@@ -265,6 +275,9 @@ func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 	var standing []Doubt
 	errFinish := w.store.Update(ctx, func(tx *db.Tx) (err error) {
 		if w.summary.EventsJoined, w.summary.Duplicates, err = tx.Relations(ctx); err != nil {
+			return err
+		}
+		if w.summary.Unconditioned, err = tx.Failures(ctx, w.run.generation.ID); err != nil {
 			return err
 		}
 		if standing, err = w.standing(ctx, tx); err != nil {

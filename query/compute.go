@@ -94,4 +94,4 @@ func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldCompo
 }
 
 // errUnconditioned is of components on which the recipe cannot be carried out.
-var errUnconditioned = errors.New("the recipe cannot condition it")
+var errUnconditioned = errors.New("the recipe cannot condition it, see query records --rejected")

@@ -146,29 +146,38 @@ type picker struct {
 	// the records of those whose peaks could not be computed.
 	rotated map[string]map[int64]db.Peaks
 	damaged map[int64]bool
-	// unsolved are the components whose spectra the generation lacks, and uncomputed the
-	// reason why they are left out.
-	unsolved   map[componentKey]bool
-	uncomputed string
+	// unsolved are the components whose spectra the generation lacks, and why they are left
+	// out.
+	unsolved map[componentKey]string
 }
 
 // findUnsolved notes what a run that was stopped, or that served another recipe, has
-// stored and not computed by the published one.
+// stored and not computed by the published one, and on what that cannot be carried out.
 func (p *picker) findUnsolved(ctx context.Context, snapshot *db.Snapshot) error {
 	found, err := snapshot.Unsolved(ctx)
 	if err != nil || len(found) == 0 {
 		return err
 	}
-	p.unsolved = map[componentKey]bool{}
+	p.unsolved = map[componentKey]string{}
+	uncomputed := fmt.Sprintf("not computed by recipe %s: run ingest --recipe with it", snapshot.Generation.Recipe.Name)
 	for _, u := range found {
-		p.unsolved[componentKey{u.RecordID, u.Role}] = true
+		reason := uncomputed
+		if u.Failure != "" {
+			reason = errUnconditioned.Error()
+		}
+		p.unsolved[componentKey{u.RecordID, u.Role}] = reason
 	}
-	p.uncomputed = fmt.Sprintf("not computed by recipe %s: run ingest --recipe with it", snapshot.Generation.Recipe.Name)
 	return nil
 }
 
-func (p *picker) isUnsolved(m *motion) bool {
-	return slices.ContainsFunc(m.members, func(c *db.HeldComponent) bool { return p.unsolved[componentKey{c.RecordID, c.Role}] })
+// unsolvedBy is the reason why a component of the motion has no spectra, "" where all have.
+func (p *picker) unsolvedBy(m *motion) string {
+	for _, c := range m.members {
+		if reason := p.unsolved[componentKey{c.RecordID, c.Role}]; reason != "" {
+			return reason
+		}
+	}
+	return ""
 }
 
 // take looks at the components of one record. A record counts once as unmet if
@@ -208,7 +217,7 @@ func (p *picker) take(components []db.HeldComponent) error {
 func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err error) {
 	unknown, met, err := p.ask(m)
 	siting := m.members[0].Record.Siting
-	flag := p.selection.Screen.screened(m)
+	flag, unsolved := p.selection.Screen.screened(m), p.unsolvedBy(m)
 	switch {
 	case err != nil || !met:
 		return "", false, err
@@ -216,8 +225,8 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return "siting " + siting, false, nil
 	case lacking != "":
 		return lacking, false, nil
-	case p.isUnsolved(m):
-		return p.uncomputed, false, nil
+	case unsolved != "":
+		return unsolved, false, nil
 	case !p.selection.IncludeUnknownDirections && m.hasUnknownDirection():
 		return reasonUnknownDirection, false, nil
 	case flag != "":

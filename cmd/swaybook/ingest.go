@@ -334,6 +334,8 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	if r.NotRecomputed > 0 {
 		p.printf("  held components that could not be       %7d\n", r.NotRecomputed)
 		p.reasons(r.Unsolved)
+	} else if r.Unconditioned > 0 {
+		p.printf("  held components the recipe fails on     %7d  as before; see query records --rejected\n", r.Unconditioned)
 	}
 	r.printRotation(p)
 	if r.Stored == 0 && r.Rotated == 0 && r.Recomputed == 0 {

@@ -194,7 +194,7 @@ func queryRecordsCommand() *cli.Command {
 		Name:  "records",
 		Usage: "what is held, what was rejected and why, or what sources disagree about",
 		Flags: append(selectionFlags("recorded, all (pairs stored over all directions too), each, h1, h2, v, rotd50 or rotd100 (default: recorded)", "as for query spectrum (default: all)"),
-			&cli.BoolFlag{Name: "rejected", DisableDefaultText: true, Usage: "list what could not be stored, and why"},
+			&cli.BoolFlag{Name: "rejected", DisableDefaultText: true, Usage: "list what could not be stored or conditioned, and why"},
 			&cli.BoolFlag{Name: "conflicts", DisableDefaultText: true, Usage: "list what catalogue, metadata and headers state otherwise than what is taken"},
 			formatFlag("table, csv or json"),
 		),
