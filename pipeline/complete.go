@@ -56,7 +56,10 @@ func (c *completer) process(ctx context.Context, u db.Unsolved) (completed, erro
 	out := completed{component: u}
 	motion, err := stored.DecodeMotion()
 	if err == nil {
-		out.spectra, err = c.run.reader.computer.compute(condition.Component(motion), signal.Arrival(motion.Acceleration, motion.StepS))
+		err = survive(func() error {
+			out.spectra, err = c.run.reader.computer.compute(condition.Component(motion), signal.Arrival(motion.Acceleration, motion.StepS))
+			return err
+		})
 	}
 	out.err = err
 	return out, ctx.Err()
@@ -92,12 +95,14 @@ func (c *completer) storeBatch(ctx context.Context, batch []completed) error {
 	return nil
 }
 
-// put stores the spectra, or why there are none. What is damaged in the store may be mended.
+// put stores the spectra, or why there are none. What is damaged in the store may be
+// mended, and so may a fault of this program.
 func (c *completer) put(ctx context.Context, tx *db.Tx, done completed) error {
+	_, isFault := errors.AsType[*faultError](done.err)
 	switch {
 	case done.err == nil:
 		return tx.AddSolved(ctx, done.component, c.run.generation.ID, done.spectra)
-	case errors.Is(done.err, db.ErrDamaged):
+	case isFault || errors.Is(done.err, db.ErrDamaged):
 		return nil
 	}
 	return tx.AddFailure(ctx, done.component, c.run.generation.ID, done.err.Error())

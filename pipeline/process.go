@@ -5,7 +5,6 @@ import (
 	"crypto/sha256"
 	"encoding/hex"
 	"errors"
-	"fmt"
 	"math"
 
 	"swaybook/db"
@@ -91,22 +90,14 @@ func (r *reader) process(ctx context.Context, file item) (result, error) {
 		return res.held(first), ctx.Err()
 	}
 	parsed := res
-	if err := survive(func() { parsed = r.parse(ctx, file.Found, data, res) }); err != nil {
+	err = survive(func() error {
+		parsed = r.parse(ctx, file.Found, data, res)
+		return nil
+	})
+	if err != nil {
 		parsed = res.rejected(err)
 	}
 	return parsed, ctx.Err()
-}
-
-// survive makes an error of a panic of do: one file, or one component, never stops a
-// batch, even where it finds a fault of this program.
-func survive(do func()) (err error) {
-	defer func() {
-		if fault := recover(); fault != nil {
-			err = fmt.Errorf("internal error: %v; this is a fault of swaybook and not of the file, please report it", fault)
-		}
-	}()
-	do()
-	return nil
 }
 
 // read loads the file, unless it was read out of an archive, and completes the

@@ -88,7 +88,11 @@ func (r *rotator) process(ctx context.Context, p db.Pair) (rotation, error) {
 	if err != nil {
 		return rot, err
 	}
-	if rot.median, rot.maximum, err = r.run.reader.computer.rotate(deg, first, second); err != nil {
+	err = survive(func() error {
+		rot.median, rot.maximum, err = r.run.reader.computer.rotate(deg, first, second)
+		return err
+	})
+	if err != nil {
 		return rot.failed(err), ctx.Err()
 	}
 	return rot, ctx.Err()
