@@ -105,7 +105,7 @@ func (m *Metadata) Add(ctx context.Context, path string, data []byte) (used stri
 			return "", metadataFault(ctx, path, err)
 		}
 		m.note(path, v.Notes)
-		m.inventory.Merge(v)
+		m.inventory.Merge(v, path)
 		return StationMetadataUsed, nil
 	case fdsnxml.Events:
 		events, left, err := fdsnxml.ReadEvents(ctx, data)
@@ -164,7 +164,7 @@ func (m *Metadata) Station(c *Channel) (s Station, ok bool) {
 	}, true
 }
 
-// epoch returns the epoch of a channel that covers the times.
+// epoch returns what is said of a channel over the times.
 func (m *Metadata) epoch(network, station, location, code string, from, to time.Time) (*fdsnxml.Channel, error) {
 	if m == nil {
 		return nil, fdsnxml.ErrUnknown

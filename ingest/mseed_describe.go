@@ -26,6 +26,9 @@ func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
 		return refuse(0, c.id.String(), "floating-point samples may be counts or an acceleration: say which with --unit")
 	case isFloat && !asCounts:
 		err = c.statedUnit(hints, epoch)
+		if isContradiction(lookup) {
+			c.warn("station metadata contradict each other, and are not used: %v", lookup)
+		}
 	case stated && !asCounts && !hints.UnitForAll:
 		return refuse(0, c.id.String(), "the samples are counts, %s says %s", orElse(hints.UnitFrom, "the hint"), hints.Unit)
 	case lookup != nil:
@@ -45,13 +48,22 @@ func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
 	return nil
 }
 
-// noEpoch says what is missing to read counts.
+// noEpoch says what is missing to read counts. Where documents contradict each other,
+// nothing is: a further one would settle nothing.
 func (c *mseedChannel) noEpoch(t *miniseed.Trace, lookup error) error {
+	if isContradiction(lookup) {
+		return refuse(0, c.id.String(), "station metadata contradict each other at %s: %w", instantText(t.Start), lookup)
+	}
 	known := ""
 	if !errors.Is(lookup, fdsnxml.ErrUnknown) {
 		known = "; " + lookup.Error()
 	}
 	return refuse(0, "", "counts need the sensitivity of %s at %s: name a StationXML file that covers it (--metadata)%s", c.id, instantText(t.Start), known)
+}
+
+func isContradiction(lookup error) bool {
+	_, ok := errors.AsType[*fdsnxml.ContradictionError](lookup)
+	return ok
 }
 
 // statedUnit takes the unit of the hints, whatever sensitivity the epoch, nil for

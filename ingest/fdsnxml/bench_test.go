@@ -47,7 +47,7 @@ func BenchmarkReadStations(b *testing.B) {
 				if err != nil {
 					b.Fatal(err)
 				}
-				v.Merge(v)
+				v.Merge(v, "")
 			}
 		})
 	}

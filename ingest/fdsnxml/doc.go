@@ -7,7 +7,8 @@
 // leaves out stays unknown; an error names the line.
 //
 // Start at ReadStations and ReadEvents; Kind tells the documents apart, and
-// Inventory.Lookup finds the one epoch of a channel that covers a time.
+// Inventory.Lookup finds the epochs of a channel that cover a time, and whether they
+// agree.
 //
 // Sources: FDSN StationXML schema 1.2; QuakeML 1.2, basic event description
 // (2013).

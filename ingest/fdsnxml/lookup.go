@@ -13,9 +13,10 @@ var ErrUnknown = errors.New("no such channel in the station metadata")
 // maxEpochs is how many epochs an error lists.
 const maxEpochs = 6
 
-// Lookup returns the one epoch of a channel that covers the times from one to
-// the other. Where none or more than one does, the error lists the epochs that
-// there are; ErrUnknown where there are none.
+// Lookup returns the epoch of a channel that covers the times from one to the
+// other, or what several that do say together. Where they contradict each other,
+// the error is a *ContradictionError; where none covers the times it lists the
+// epochs that there are; ErrUnknown where there are none.
 func (v *Inventory) Lookup(network, station, location_, code string, from, to time.Time) (*Channel, error) {
 	var epochs, fit []*Channel
 	wanted := Channel{Network: network, Station: station, Location: location(location_), Code: code}
@@ -32,7 +33,7 @@ func (v *Inventory) Lookup(network, station, location_, code string, from, to ti
 	case len(epochs) == 0:
 		return nil, ErrUnknown
 	case len(fit) > 1:
-		return nil, fmt.Errorf("more than one epoch covers %s: %s", stamp(from), list(fit))
+		return agree(fit)
 	}
 	for _, c := range epochs {
 		if covers(c.Start, c.End, from, from) {
@@ -59,12 +60,14 @@ func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool
 	return s, ok
 }
 
-// Merge adds what another document says. What both say alike is kept once.
-func (v *Inventory) Merge(other *Inventory) {
+// Merge adds what the document at path says. What is said already is kept once, as
+// that of the first.
+func (v *Inventory) Merge(other *Inventory, path string) {
 	for _, s := range other.Stations {
 		v.addStation(s)
 	}
 	for _, c := range other.Channels {
+		c.Path = path
 		v.addChannel(c)
 	}
 }
@@ -76,7 +79,9 @@ func (v *Inventory) addStation(s Station) {
 }
 
 func (v *Inventory) addChannel(c Channel) {
-	if v.channels.add(c, c.name(), len(v.Channels)) {
+	said := c
+	said.Path, said.Line = "", 0
+	if v.channels.add(said, c.name(), len(v.Channels)) {
 		v.Channels = append(v.Channels, c)
 	}
 }

@@ -39,6 +39,18 @@ type Channel struct {
 	Polynomial bool
 	// StageGain is the product of the gains of all stages, 0 where not stated.
 	StageGain float64
+	// Path is that of the document, "" before Merge, and Line that of the element; of
+	// several epochs Path names all and Line is 0.
+	Path string
+	Line int
+}
+
+// Place names the element: path:line.
+func (c *Channel) Place() string {
+	if c.Line == 0 {
+		return c.Path
+	}
+	return fmt.Sprintf("%s:%d", c.Path, c.Line)
 }
 
 // Sensitivity is what an instrument makes of its input: Value output units for
@@ -189,6 +201,7 @@ func (r *stationReader) channel(network, station string, start xml.StartElement)
 		return c, false, err
 	}
 	c, err = raw.channel(network, station)
+	c.Line = line
 	name := "channel " + c.name().String()
 	if err != nil {
 		r.note(leftOut(line, name, err))
