@@ -76,13 +76,20 @@ const (
 // EndsInZip reports whether the content of a file ends as a zip archive does, whatever it
 // begins with: a program that unpacks what is behind it.
 func EndsInZip(data []byte) bool {
-	tail := data[max(0, len(data)-zipEndSize-zipCommentMax):]
-	for at := bytes.LastIndex(tail, []byte(zipEndMagic)); at >= 0; at = bytes.LastIndex(tail[:at], []byte(zipEndMagic)) {
-		if rest := tail[at:]; len(rest) >= zipEndSize && zipEndSize+int(binary.LittleEndian.Uint16(rest[zipCommentAt:])) == len(rest) {
+	// Forwards, since package bytes searches backwards one byte at a time, which a file of
+	// miniSEED would feel.
+	rest := data[max(0, len(data)-zipEndSize-zipCommentMax):]
+	for {
+		at := bytes.Index(rest, []byte(zipEndMagic))
+		if at < 0 || len(rest)-at < zipEndSize {
+			return false
+		}
+		rest = rest[at:]
+		if zipEndSize+int(binary.LittleEndian.Uint16(rest[zipCommentAt:])) == len(rest) {
 			return true
 		}
+		rest = rest[len(zipEndMagic):]
 	}
-	return false
 }
 
 func isBzip2(head []byte) bool {
