@@ -33,12 +33,17 @@ func axisOfDip(dipDeg float64) (Axis, error) {
 		dipDeg, horizontalDip, verticalDip)
 }
 
+func axisName(axis Axis) string {
+	if axis == AxisVertical {
+		return "vertical"
+	}
+	return "horizontal"
+}
+
 // warnDip tells that an axis is not quite what it is taken for.
 func warnDip(c *Channel, dipDeg float64, axis Axis) {
-	switch dip := math.Abs(dipDeg); {
-	case axis == AxisHorizontal && dip > axisTolerance:
-		c.warn("a dip of %g°: taken for horizontal", dipDeg)
-	case axis == AxisVertical && dip < 90-axisTolerance:
-		c.warn("a dip of %g°: taken for vertical", dipDeg)
+	dip := math.Abs(dipDeg)
+	if axis == AxisHorizontal && dip > axisTolerance || axis == AxisVertical && dip < 90-axisTolerance {
+		c.warn("a dip of %g°: taken for %s", dipDeg, axisName(axis))
 	}
 }

@@ -181,7 +181,7 @@ func (c *mseedChannel) orient(e *fdsnxml.Channel) error {
 	}
 	switch {
 	case dip.Known:
-		if err := c.byDip(dip.Value); err != nil {
+		if err := c.byDip(dip.Value, e); err != nil {
 			return err
 		}
 	case strings.Contains(triaxialCodes, letter):
@@ -200,15 +200,21 @@ func (c *mseedChannel) orient(e *fdsnxml.Channel) error {
 	return nil
 }
 
-// byDip tells vertical from horizontal. A vertical that is positive down is
-// turned.
-func (c *mseedChannel) byDip(dipDeg float64) error {
+// byDip tells vertical from horizontal, and refuses a dip against the letter, since nobody
+// knows which of the two is wrong. A vertical that is positive down is turned.
+func (c *mseedChannel) byDip(dipDeg float64, e *fdsnxml.Channel) error {
 	axis, err := axisOfDip(dipDeg)
 	if err != nil {
 		return refuse(0, c.id.String(), "%w", err)
 	}
-	if o := &c.Orientation; axis == AxisVertical || o.Axis != AxisHorizontal {
-		*o = Orientation{Axis: axis, Label: o.Label}
+	o := &c.Orientation
+	switch o.Axis {
+	case axis:
+	case AxisUnknown:
+		o.Axis = axis
+	default:
+		return refuse(0, c.id.String(), "%s states a dip of %g°, %s, for a channel %s, which is %s: correct whichever is wrong",
+			e.Place(), dipDeg, axisName(axis), o.Label, axisName(o.Axis))
 	}
 	if axis == AxisVertical && dipDeg > 0 {
 		c.turned = !c.turned

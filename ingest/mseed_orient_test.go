@@ -1,6 +1,8 @@
 package ingest
 
 import (
+	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 )
@@ -29,7 +31,7 @@ func TestMiniSEEDOrientation(t *testing.T) {
 		{"off the horizontal, as far as may be", "HN2", "<Azimuth>200</Azimuth><Dip>-15</Dip>", Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(200), Label: "2"}, "a dip of -15°: taken for horizontal"},
 		{"off the vertical, as far as may be", "HN2", "<Azimuth>200</Azimuth><Dip>75</Dip>", Orientation{Axis: AxisVertical, Label: "2"}, "a dip of 75°: taken for vertical"},
 		{"off the vertical, a little", "HN2", "<Azimuth>200</Azimuth><Dip>-85</Dip>", Orientation{Axis: AxisVertical, Label: "2"}, ""},
-		{"an E that stands upright", "HNE", "<Dip>-90</Dip>", Orientation{Axis: AxisVertical, Label: "E"}, ""},
+		{"a Z that is none quite", "HNZ", "<Dip>-75</Dip>", Orientation{Axis: AxisVertical, Label: "Z"}, "a dip of -75°: taken for vertical"},
 	}
 	for _, k := range cases {
 		replace := []string{given, k.by, `code="HNE"`, `code="` + k.code + `"`}
@@ -43,26 +45,52 @@ func TestMiniSEEDOrientation(t *testing.T) {
 	}
 }
 
+// TestMiniSEEDDipAgainstLetter has dips that contradict the channels' letters: neither is
+// believed, and the other channels of the file are read.
+func TestMiniSEEDDipAgainstLetter(t *testing.T) {
+	e, n, z := mseedRecord("HNE", 0, 9000), mseedRecord("HNN", 0, 9000), mseedRecord("HNZ", 0, 9000)
+	data := slices.Concat(e.Series(3), n.Series(3), z.Series(3))
+	for _, k := range []struct{ code, old, dip, want string }{
+		{"HNZ", "-90", "0", "26 states a dip of 0°, horizontal, for a channel Z, which is vertical"},
+		{"HNZ", "-90", "-15", "26 states a dip of -15°, horizontal, for a channel Z, which is vertical"},
+		{"HNE", "0", "-90", "12 states a dip of -90°, vertical, for a channel E, which is horizontal"},
+		{"HNN", "0", "75", "19 states a dip of 75°, vertical, for a channel N, which is horizontal"},
+	} {
+		text := string(readFile(t, filepath.Join(recordsDir("miniseed"), "station.xml")))
+		at := strings.Index(text, `code="`+k.code+`"`)
+		text = text[:at] + strings.Replace(text[at:], "<Dip>"+k.old+"<", "<Dip>"+k.dip+"<", 1)
+		m := &Metadata{}
+		if _, err := m.Add(t.Context(), "s.xml", []byte(text)); err != nil {
+			t.Fatal(err)
+		}
+		_, channels, err := Parse(t.Context(), "f", data, Hints{Metadata: m})
+		want := "f: XX.TARN.00." + k.code + ": s.xml:" + k.want + ": correct whichever is wrong"
+		if err == nil || err.Error() != want || len(channels) != 2 || slices.ContainsFunc(channels, func(c Channel) bool { return c.ChannelCode == k.code }) {
+			t.Errorf("%s: %d channels,\n%v, want\n%s", k.code, len(channels), err, want)
+		}
+	}
+}
+
 // TestMiniSEEDTilted has sensors that are neither horizontal nor vertical, one
 // alone, and three at the angle of a symmetric triaxial arrangement, whose
 // tangent is 1/√2: they stand for no direction of the ground. Others of the file
 // are read.
 func TestMiniSEEDTilted(t *testing.T) {
 	const given, words = "<Azimuth>90</Azimuth><Dip>0</Dip>", "° is neither horizontal (up to 15°) nor vertical (from 75°): the three channels of the sensor must be turned into vertical, north and east first"
-	e, n := mseedRecord("HNE", 0, 9000), mseedRecord("HNN", 0, 9000)
+	one, n := mseedRecord("HN2", 0, 9000), mseedRecord("HNN", 0, 9000)
 	for dip, refused := range map[string]bool{
 		"15": false, "15.01": true, "35.26": true, "-35.26": true, "45": true, "-74.99": true, "75": false, "-75": false,
 	} {
-		hints := stationHints(t, given, "<Azimuth>90</Azimuth><Dip>"+dip+"</Dip>")
-		_, channels, err := Parse(t.Context(), "case", append(e.Series(3), n.Series(3)...), hints)
-		want := "case: XX.TARN.00.HNE: a dip of " + dip + words
+		hints := stationHints(t, given, "<Azimuth>90</Azimuth><Dip>"+dip+"</Dip>", `code="HNE"`, `code="HN2"`)
+		_, channels, err := Parse(t.Context(), "case", append(one.Series(3), n.Series(3)...), hints)
+		want := "case: XX.TARN.00.HN2: a dip of " + dip + words
 		switch {
 		case !refused && (err != nil || len(channels) != 2):
 			t.Errorf("dip %s: %d channels, %v", dip, len(channels), err)
 		case refused && (err == nil || err.Error() != want || len(channels) != 1 || channels[0].ChannelCode != "HNN"):
 			t.Errorf("dip %s: %d channels,\n%v, want\n%s", dip, len(channels), err, want)
 		}
-		if _, channels, err = Parse(t.Context(), "case", e.Series(3), hints); refused && (err == nil || err.Error() != want || len(channels) > 0) {
+		if _, channels, err = Parse(t.Context(), "case", one.Series(3), hints); refused && (err == nil || err.Error() != want || len(channels) > 0) {
 			t.Errorf("dip %s alone: %d channels, %v", dip, len(channels), err)
 		}
 	}
