@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strings"
 
+	"swaybook/ingest/archive"
 	"swaybook/ingest/fdsnxml"
 )
 
@@ -25,6 +26,9 @@ func newContent(ctx context.Context, data []byte) (c *Content, textErr error) {
 	c = &Content{Data: data, ctx: ctx}
 	if c.Text, textErr = newText(data, ctx.Err); textErr != nil {
 		c.Text = &Text{}
+	}
+	if textErr != nil && archive.IsEmptyTar(data) {
+		textErr = refuse(0, "", "file holds only zeros: a tar archive without files, or content that was lost")
 	}
 	return c, textErr
 }

@@ -92,6 +92,15 @@ func EndsInZip(data []byte) bool {
 	}
 }
 
+// IsEmptyTar reports whether the content of a file is that of a tar archive with nothing in
+// it: the end mark, two blocks of zeros at least, and whole ones. A file that was lost may
+// look alike.
+//
+// Source: POSIX.1-2017, pax, "ustar Interchange Format".
+func IsEmptyTar(data []byte) bool {
+	return len(data) >= 2*blockSize && len(data)%blockSize == 0 && len(bytes.Trim(data, "\x00")) == 0
+}
+
 func isBzip2(head []byte) bool {
 	return len(head) >= 10 && '1' <= head[3] && head[3] <= '9' && slices.Contains(bzip2Block, string(head[4:10]))
 }
