@@ -37,6 +37,8 @@ func TestPlainEncodings(t *testing.T) {
 		"byte order mark":    "\ufeff" + text,
 		"mark and CRLF":      "\ufeff" + strings.ReplaceAll(text, "\n", "\r\n"),
 		"Ctrl-Z at the end":  text + "\x1a",
+		"Ctrl-Z, CRLF":       strings.ReplaceAll(text+"\x1a\n", "\n", "\r\n"),
+		"Ctrl-Z, several":    text + "\x1a\r\n\x1a\n\x1a\x1a\r\n",
 		"NUL at the end":     text + "\x00\x00\x00",
 		"ISO 8859-1":         strings.ReplaceAll(text, "\u00f6", "\xf6"),
 		"UTF-16, low first":  "\xff\xfe" + wide(func(r rune) string { return string([]byte{byte(r), byte(r >> 8)}) }),

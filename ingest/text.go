@@ -58,7 +58,7 @@ func newText(data []byte, stopped func() error) (*Text, error) {
 	if err != nil {
 		return nil, err
 	}
-	data = bytes.TrimRight(data, "\x00\x1a")
+	data = withoutPadding(data)
 	if err := refuseBinary(data); err != nil {
 		if archive.EndsInZip(whole) {
 			return nil, refuse(0, "", "file is a zip archive behind a program or script that unpacks it: unpack it first (read in place are %s)", archive.Opened)
@@ -76,6 +76,16 @@ func newText(data []byte, stopped func() error) (*Text, error) {
 		return nil, refuse(0, "", "file holds only blanks")
 	}
 	return t, nil
+}
+
+// withoutPadding cuts off what old systems leave at the end of a text: NUL, and
+// Ctrl-Z with or without line ends after it.
+func withoutPadding(data []byte) []byte {
+	n := len(bytes.TrimRight(data, "\x00\x1a\r\n"))
+	if end := bytes.IndexByte(data[n:], '\x1a'); end >= 0 {
+		data = data[:n+end]
+	}
+	return bytes.TrimRight(data, "\x00")
 }
 
 // Len returns the number of lines.
