@@ -91,6 +91,26 @@ func TestLayoutOfColumns(t *testing.T) {
 	}
 }
 
+// The example takes no table of other units or with its columns in another order.
+func TestLayoutRecognisesWholeLines(t *testing.T) {
+	hints := Hints{Layouts: exampleLayouts(t)}
+	tower := towerTable(160)
+	if format, _, err := parseLines(tower, hints); format != "tower-table" || err != nil {
+		t.Fatalf("%q, %v", format, err)
+	}
+	for name, lines := range map[string][]string{
+		"unit of time":          edit(t, tower, 7, "ms;", "s;"),
+		"unit of acceleration":  edit(t, tower, 7, "m/s2;m/s2", "cm/s2;m/s2"),
+		"columns interchanged":  edit(t, tower, 6, "X;Y", "Y;X"),
+		"a column more":         edit(t, tower, 6, "Z", "Z;W"),
+		"temperature elsewhere": edit(t, tower, 6, "Temp.;X;Y;Z", "X;Y;Z;Temp."),
+	} {
+		if format, _, _ := parseLines(lines, hints); format == "tower-table" {
+			t.Errorf("%s: taken for a table of the layout", name)
+		}
+	}
+}
+
 // readDescription reads a layout from the lines of its description.
 func readDescription(lines ...string) (*Layout, error) {
 	var ls Layouts
