@@ -168,7 +168,7 @@ func direction(label string) (Orientation, bool) {
 var (
 	// stemToken is a direction after a separator at the end of a stem; a digit
 	// after NS, EW or UD numbers the sensor.
-	stemToken = regexp.MustCompile(`(?i)^(.*?)[-_. ]+(N-S|E-W|U-D|H1|H2|(?:NS|EW|UD)\d?|LONG|TRANS?|VERT?|VRT|UP|DO?WN|DN|[NESWZVULT12]|\d{3})$`)
+	stemToken = regexp.MustCompile(`(?i)^(.*?)[-_. ]+(N-S|E-W|U-D|H1|H2|(?:NS|EW|UD)\d?|LONG|TRANS?|VERT?|VRT|UP|DO?WN|DN|[NESWZVULT]|\d{3})$`)
 	// stemDigits are three digits that touch a letter. After a digit they may be
 	// part of a station code, a date or a time.
 	stemDigits = regexp.MustCompile(`^(.*[A-Za-z])(\d{3})$`)
@@ -185,12 +185,12 @@ var (
 // direction:
 //
 //	after a separator  H1 H2 V, N E Z, S W, NS EW UD, N-S E-W U-D, NS1 EW1 UD1 …,
-//	                   UP DN DWN DOWN, VER VERT VRT, L T, LONG TRAN, 1 2, 000 to 360
+//	                   UP DN DWN DOWN, VER VERT VRT, L T, LONG TRAN, 000 to 360
 //	touching           000 to 360 after a letter, NS EW UD after a digit, and UP DWN
 //	                   VER in names that begin with RSN and a number
 //
-// Case does not matter. Numbers from 001 to 009 are left alone, since they count
-// files more often than they give an azimuth. The number of a sensor (NS1) stays
+// Case does not matter. Numbers of one or two digits and those from 001 to 009 are
+// left alone, since they count files more often than they give a direction. The number of a sensor (NS1) stays
 // with the base. Where no direction is found, or nothing but it, the base is the
 // whole stem.
 func SplitStem(stem string) (base string, o Orientation) {
@@ -216,10 +216,7 @@ func SplitStem(stem string) (base string, o Orientation) {
 
 // stemDirection is direction without the numbers that count files.
 func stemDirection(token string) (Orientation, bool) {
-	if len(token) == 3 && isDigit(token[0]) && "001" <= token && token <= "009" {
-		return Orientation{}, false
-	}
-	if n := len(token); n == 2 && isDigit(token[0]) || n == 1 && token[0] != '1' && token[0] != '2' && isDigit(token[0]) {
+	if n := len(token); n > 0 && isDigit(token[0]) && (n < 3 || "001" <= token && token <= "009") {
 		return Orientation{}, false
 	}
 	o, ok := direction(token)
@@ -227,4 +224,15 @@ func stemDirection(token string) (Orientation, bool) {
 		return Orientation{}, false
 	}
 	return o, true
+}
+
+// WarnOfStem warns where the channel's azimuth is one that a file's stem gave in
+// degrees, unless it is along an axis: other numbers of three digits at the end of
+// a name may count something.
+func (c *Channel) WarnOfStem(stem string) {
+	_, o := SplitStem(stem)
+	if o.Label == "" || !isDigit(o.Label[0]) || math.Mod(o.AzimuthDeg.Value, 90) == 0 || c.Orientation != o {
+		return
+	}
+	c.warn("direction %g° taken from the file's name", o.AzimuthDeg.Value)
 }

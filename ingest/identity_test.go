@@ -62,7 +62,7 @@ func TestSplitStem(t *testing.T) {
 		stem, base string
 		want       string // axis, azimuth and rank in short
 	}{
-		{"quake_H1", "quake", "h #1"}, {"quake-h2", "quake", "h #2"}, {"quake.V", "quake", "v"}, {"quake_1", "quake", "h #1"}, {"quake_2", "quake", "h #2"},
+		{"quake_H1", "quake", "h #1"}, {"quake-h2", "quake", "h #2"}, {"quake.V", "quake", "v"},
 		{"quake_N", "quake", "h 0"}, {"quake_E", "quake", "h 90"}, {"quake Z", "quake", "v"}, {"quake_S", "quake", "h 180"}, {"quake_W", "quake", "h 270"},
 		{"quake_NS", "quake", "h 0"}, {"quake_ew", "quake", "h 90"}, {"quake_UD", "quake", "v"}, {"quake_N-S", "quake", "h 0"}, {"quake-E-W", "quake", "h 90"},
 		{"XYZ_NS1", "XYZ_1", "h 0"}, {"XYZ_EW2", "XYZ_2", "h 90"}, {"ABC0014103040812NS2", "ABC0014103040812_2", "h 0"}, {"ABC001EW", "ABC001", "h 90"},
@@ -71,6 +71,7 @@ func TestSplitStem(t *testing.T) {
 		{"quake_L", "quake", "h #1"}, {"quake_T", "quake", "h #2"}, {"quake_long", "quake", "h #1"}, {"quake_TRAN", "quake", "h #2"}, {"quake_VERT", "quake", "v"},
 		{"NS", "NS", "h 0"}, {"090", "090", "h 90"}, {"_NS", "_NS", ""},
 		// What only looks like a direction.
+		{"motion_1", "motion_1", ""}, {"motion_2", "motion_2", ""}, {"quake-1", "quake-1", ""}, {"1", "1", ""}, {"2", "2", ""},
 		{"CHAN006", "CHAN006", ""}, {"rec_001", "rec_001", ""}, {"rec_361", "rec_361", ""}, {"ST01090", "ST01090", ""}, {"20410304", "20410304", ""},
 		{"RIVER", "RIVER", ""}, {"PLAINS", "PLAINS", ""}, {"GROUP", "GROUP", ""}, {"rec_3", "rec_3", ""}, {"rec_12", "rec_12", ""}, {"", "", ""}, {"quake", "quake", ""},
 	}
@@ -79,6 +80,24 @@ func TestSplitStem(t *testing.T) {
 		if base != k.base || short(o) != k.want {
 			t.Errorf("SplitStem(%q) = %q, %q, want %q, %q", k.stem, base, short(o), k.base, k.want)
 		}
+	}
+}
+
+// A number of three digits may count files: it is taken, and that is said.
+func TestWarnOfStem(t *testing.T) {
+	for stem, want := range map[string]string{
+		"motion_050": "direction 50° taken from the file's name", "CDH230": "direction 230° taken from the file's name",
+		"motion_000": "", "motion_090": "", "motion_180": "", "motion_270": "", "motion_360": "", "motion_N": "", "motion_1": "", "motion": "",
+	} {
+		_, o := SplitStem(stem)
+		c := Channel{Orientation: o}
+		if c.WarnOfStem(stem); strings.Join(c.Warnings, "; ") != want {
+			t.Errorf("%s: warnings %q, want %q", stem, c.Warnings, want)
+		}
+	}
+	other := Channel{Orientation: azimuth(20)}
+	if other.WarnOfStem("motion_050"); len(other.Warnings) > 0 {
+		t.Errorf("the catalogue's azimuth: warnings %q", other.Warnings)
 	}
 }
 

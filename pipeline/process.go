@@ -191,13 +191,17 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 	if r.catalogue != nil {
 		r.catalogue.GiveDirection(file.Rel, c)
 	}
-	if c.Orientation.Axis == ingest.AxisUnknown {
+	silent := c.Orientation.Axis == ingest.AxisUnknown
+	if silent {
 		_, c.Orientation = ingest.SplitStem(stem)
 	}
-	if r.catalogue == nil {
-		return stated, false
+	if r.catalogue != nil {
+		stated, matched = r.catalogue.Apply(file.Rel, c)
 	}
-	return r.catalogue.Apply(file.Rel, c)
+	if silent {
+		c.WarnOfStem(stem)
+	}
+	return stated, matched
 }
 
 // solve completes s by what is computed of the channel.
