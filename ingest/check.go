@@ -1,10 +1,6 @@
 package ingest
 
-import (
-	"errors"
-	"math"
-	"slices"
-)
+import "math"
 
 // The limits outside which a number is taken for a mistake in unit or header.
 const (
@@ -57,6 +53,9 @@ func checkSamples(c *Channel) error {
 		}
 	}
 	peak := max(-low, high)
+	if err := checkMarks(c, low, high); err != nil {
+		return err
+	}
 	switch {
 	case low == high:
 		return refuse(c.Line, "samples", "all %d values are equal: a dead channel", len(c.Acceleration))
@@ -65,37 +64,8 @@ func checkSamples(c *Channel) error {
 	case peak > DoubtfulPeakG*StandardGravity:
 		c.warn("peak above %d g: check the unit", DoubtfulPeakG)
 	}
-	if err := errors.Join(checkMarks(c, low), checkMarks(c, high)); err != nil {
-		return err
-	}
 	flagQuality(c, low, high)
 	return checkHeaderPeak(c, peak)
-}
-
-// checkMarks refuses a series whose extreme is, in the file's unit, a number by which
-// tables mark missing values, more than once and far from all other samples. Once it
-// may be a spike, of which flagQuality warns.
-func checkMarks(c *Channel, extreme float64) error {
-	isMark := func(mark float64) bool { return math.Abs(extreme-mark*c.UnitMPS2) <= 1e-12*math.Abs(extreme) }
-	if c.UnitMPS2 == 0 || !slices.ContainsFunc(sentinels, isMark) {
-		return nil
-	}
-	count, first, rest := 0, 0, 0.0
-	for i, a := range c.Acceleration {
-		switch {
-		case a != extreme:
-			rest = max(rest, math.Abs(a))
-		case count == 0:
-			first = i + 1
-			fallthrough
-		default:
-			count++
-		}
-	}
-	if count < 2 || rest > math.Abs(extreme)/2 {
-		return nil
-	}
-	return refuse(c.Line, "samples", "value %.6g occurs %d times, first as value %d, apart from all others: a mark for missing values?", extreme/c.UnitMPS2, count, first)
 }
 
 // How far the samples' peak may be from the one that the header states, relative

@@ -158,13 +158,13 @@ func parse(ctx context.Context, data []byte, hints Hints) (string, []Channel, er
 			return name, nil, err
 		}
 	}
-	channels, refused = checkAll(channels, refused)
+	channels, refused = checkAll(channels, refused, content.Text)
 	return name, channels, refused.err(len(channels))
 }
 
 // checkAll holds each channel to check and moves those that fail to the
-// refusals.
-func checkAll(channels []Channel, refused ChannelErrors) ([]Channel, ChannelErrors) {
+// refusals. The text is that of the file.
+func checkAll(channels []Channel, refused ChannelErrors, t *Text) ([]Channel, ChannelErrors) {
 	var good []Channel
 	for i := range channels {
 		c := &channels[i]
@@ -174,6 +174,7 @@ func checkAll(channels []Channel, refused ChannelErrors) ([]Channel, ChannelErro
 			continue
 		}
 		pe := parseErrors(err)[0]
+		placeMark(pe, t)
 		if name := channelName(c); len(channels)+len(refused) > 1 && name != "" {
 			pe.Err = fmt.Errorf("channel %s: %w", name, pe.Err)
 		}

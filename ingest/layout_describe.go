@@ -77,9 +77,6 @@ func (l *Layout) channel(s *layoutSeries, i int, v layoutValues, step float64, h
 	if s.minus > 0 {
 		c.warn("line %d: U+2212 read as a minus sign", s.minus)
 	}
-	if err := checkSentinels(&c, s.line); err != nil {
-		return c, err
-	}
 	warnOffset(&c)
 	scale(c.Acceleration, c.UnitMPS2)
 	return c, nil

@@ -127,9 +127,6 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		if err := h.describe(&c); err != nil {
 			return nil, err
 		}
-		if err := checkSentinels(&c, func(i int) int { return rows.line[i] }); err != nil {
-			return nil, err
-		}
 		warnOffset(&c)
 		warnLength(&c)
 		scale(c.Acceleration, unit.MPS2)

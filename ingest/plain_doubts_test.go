@@ -158,7 +158,7 @@ func TestPlainDoubts(t *testing.T) {
 		{"touching exponents", edit(t, values, 7, values[6], "1.0E-021.5E-03"), known, `case:7: samples: "1.0E-021.5E-03": fields touch, as in a fixed-width file; give their widths in a layout, with --layout`},
 		{"thousands, comma", suffixed([]string{"1", "2", "3", "4", "5", "6", "7", "8", "9", "8"}, ",234.5"), known, `case:1: samples: "1,234.5": thousands separators are not read`},
 		{"thousands, blanks", suffixed([]string{"1", "2", "1", "4", "5", "6", "7", "8", "9", "8"}, " 234,5"), known, `case:1: samples: "1 234,5": thousands separators are not read`},
-		{"marks", head([]string{"9999", "0.1", "9999"}, values), known, `case:1: samples: value 9999 occurs 2 times, apart from all others: a mark for missing values?`},
+		{"marks", head([]string{"9999", "0.1", "9999"}, values), known, `case:1: samples: value 9999 occurs 2 times, first as value 1, apart from all others: a mark for missing values?`},
 		{"not UTF-8 in the data", edit(t, values, 7, values[6], "0.\xb5"), known, `case:7: samples: expected a number, found "0.µ"`},
 	})
 }

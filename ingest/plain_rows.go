@@ -4,7 +4,6 @@ import (
 	"bytes"
 	"fmt"
 	"math"
-	"slices"
 	"strings"
 )
 
@@ -175,40 +174,4 @@ func resolution(field []byte) float64 {
 		digits = end - at - 1
 	}
 	return math.Pow10(exponent - digits)
-}
-
-// sentinels are the numbers that tables use for "no value".
-var sentinels = []float64{-999, -9999, -99999, -999999, 9999, 99999, 999999}
-
-// leastSentinel is the least magnitude of sentinels.
-const leastSentinel = 999
-
-// checkSentinels looks for values that stand far from all others and are
-// written like "no value": several are refused, one is a warning. line gives the
-// line of a value.
-func checkSentinels(c *Channel, line func(i int) int) error {
-	isSentinel := func(v float64) bool { return math.Abs(v) >= leastSentinel && slices.Contains(sentinels, v) }
-	if !slices.ContainsFunc(c.Acceleration, isSentinel) {
-		return nil
-	}
-	for _, mark := range sentinels {
-		count, first, rest := 0, 0, 0.0
-		for i, v := range c.Acceleration {
-			if v == mark {
-				if count++; count == 1 {
-					first = line(i)
-				}
-				continue
-			}
-			rest = max(rest, math.Abs(v))
-		}
-		switch {
-		case count == 0 || rest > math.Abs(mark)/2:
-		case count == 1:
-			c.warn("line %d: value %g stands apart from all others: a mark for a missing value?", first, mark)
-		default:
-			return refuse(first, "samples", "value %g occurs %d times, apart from all others: a mark for missing values?", mark, count)
-		}
-	}
-	return nil
 }

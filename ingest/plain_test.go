@@ -147,7 +147,6 @@ func TestPlainReads(t *testing.T) {
 		{"blank lines", head([]string{"0.1", "", "0.2", ""}, values), known, 0.01, "g", 22, 0},
 		{"unicode minus", []string{"1", "\u22121", "2", "\u22122", "3", "\u22123", "4", "\u22124", "5", "\u22125"}, Hints{Unit: "mg", StepS: 0.01}, 0.01, "mg", 10, 1},
 		{"velocity beside it", head([]string{"time vel acc"}, timed(even(20, 0.02), "%.2f", " 0.5 ")), unit, 0.02, "g", 20, 0},
-		{"one mark", head([]string{"-999"}, values), Hints{Unit: "cm/s2", StepS: 0.01}, 0.01, "cm/s2", 21, 1},
 		{"offset", []string{"1", "2", "1", "2", "1", "3", "1", "2", "1", "2"}, Hints{Unit: "mg", StepS: 0.01}, 0.01, "mg", 10, 1},
 		{"clipped", head(values, []string{"0.5", "0.5", "0.5", "0.5", "-0.4", "-0.4", "-0.4", "-0.4"}), known, 0.01, "g", 28, 1},
 	}
@@ -220,7 +219,8 @@ func TestPlainRefusals(t *testing.T) {
 		{"more fields", edit(t, values, 7, values[6], "0.1 0.2"), known, `case:7: samples: expected a number, found "0.1 0.2"`},
 		{"overflow", edit(t, values, 7, values[6], "1e38"), known, `case:7: samples: value "1e38" is an overflow mark`},
 		{"asterisks", edit(t, values, 7, values[6], "********"), known, `case:7: samples: value "********": missing values are not read`},
-		{"marks", head([]string{"-999", "0.1", "-999"}, values), Hints{Unit: "cm/s2", StepS: 0.01}, `case:1: samples: value -999 occurs 2 times, apart from all others: a mark for missing values?`},
+		{"mark", edit(t, values, 7, values[6], "-999"), Hints{Unit: "cm/s2", StepS: 0.01}, `case:7: samples: value -999 is apart from all others: a mark for a missing value?`},
+		{"marks", head([]string{"-999", "0.1", "-999"}, values), Hints{Unit: "cm/s2", StepS: 0.01}, `case:1: samples: value -999 occurs 2 times, first as value 1, apart from all others: a mark for missing values?`},
 		{"blank lines", head(values, []string{"", "", "0.1"}), known, `case:23: samples: 2 blank lines inside the data: a second record?`},
 		{"mixed decimals", head(values, []string{"0,5"}), known, `case:21: samples: "0,5": decimal points and decimal commas in one file (the others are in line 1)`},
 		{"touching", []string{"0.0012-0.0034", "0.0021-0.0043", "0.0013-0.0035", "0.1-0.2"}, known, `case:1: samples: "0.0012-0.0034": fields touch, as in a fixed-width file; give their widths in a layout, with --layout`},
