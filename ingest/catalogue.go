@@ -8,6 +8,7 @@ import (
 	"io"
 	"path"
 	"strings"
+	"sync"
 	"sync/atomic"
 )
 
@@ -41,10 +42,12 @@ type Catalogue struct {
 	// UnknownColumns are the columns of the header that have no meaning here.
 	UnknownColumns []UnknownColumn
 
-	rows  []*catalogueRow // in order of precedence, weak first
-	exact map[string][]int
-	globs []int
-	joins map[joinKey][]int
+	nowhere []int           // lines with a position of 0, 0
+	torn    sync.Map        // of tornRows: the first file by name
+	rows    []*catalogueRow // in order of precedence, weak first
+	exact   map[string][]int
+	globs   []int
+	joins   map[joinKey][]int
 }
 
 // UnknownColumn is a column that was not read, with the known name nearest to
@@ -102,9 +105,10 @@ const maxCatalogueErrors = 20
 //	site_class siting instrument azimuth_deg unit dt_s low_cut_hz high_cut_hz
 //
 // Rows may repeat what they say of an event or a station, and may not contradict
-// each other in it. Blank and -999 mean not stated. Times are RFC 3339 or a date. The error joins
-// one *ParseError for each cell, row or header that is wrong, the first 20 of
-// them, with name as their path.
+// each other in it. Blank and -999 mean not stated, as does a position of 0, 0,
+// which Notes lists. Times are RFC 3339 or a date. The error joins one *ParseError
+// for each cell, row or header that is wrong, the first 20 of them, with name as
+// their path.
 func ReadCatalogue(name string, r io.Reader) (*Catalogue, error) {
 	c, faults := readCatalogue(r)
 	if len(faults) == 0 {
@@ -162,6 +166,9 @@ func readCatalogue(r io.Reader) (*Catalogue, []*ParseError) {
 			continue
 		}
 		seen[key] = line
+		if row.dropNowhere() {
+			c.nowhere = append(c.nowhere, line)
+		}
 		c.rows = append(c.rows, row)
 	}
 }
@@ -306,6 +313,16 @@ func (row *catalogueRow) validate() error {
 		return fmt.Errorf("low_cut_hz %g is not below high_cut_hz %g", low.Value, high.Value)
 	}
 	return nil
+}
+
+// dropNowhere makes positions of 0, 0 unknown, which is how tables leave them out, and
+// reports whether there was one.
+func (row *catalogueRow) dropNowhere() bool {
+	e, s := &row.channel.Event, &row.channel.Station
+	event, station := e.Latitude.Known, s.Latitude.Known
+	e.Latitude, e.Longitude = position(e.Latitude, e.Longitude)
+	s.Latitude, s.Longitude = position(s.Latitude, s.Longitude)
+	return event != e.Latitude.Known || station != s.Latitude.Known
 }
 
 // key tells rows apart that may stand beside each other.

@@ -151,7 +151,7 @@ func rowName(row *catalogueRow) string { return fmt.Sprintf("catalogue line %d",
 // station.
 func (c *Catalogue) Apply(rel string, ch *Channel) (stated Stated, matched bool) {
 	files := c.fileRows(rel)
-	giveDirection(files, ch)
+	c.noteTorn(rel, giveDirection(files, ch))
 	files = slices.DeleteFunc(files, func(row *catalogueRow) bool { return !row.fits(ch.Orientation) })
 	for _, row := range files {
 		row.setCodes(ch)
@@ -202,27 +202,35 @@ func (row *catalogueRow) state(to *Stated) {
 // direction of the catalogue's only row for it with a component, where it has none.
 func (c *Catalogue) GiveDirection(rel string, ch *Channel) { giveDirection(c.fileRows(rel), ch) }
 
-// giveDirection gives a channel without direction that of the only row with
-// component.
-func giveDirection(files []*catalogueRow, ch *Channel) {
+// giveDirection gives a channel without direction that of the rows with component,
+// where they agree; where not, it returns the first two that differ.
+func giveDirection(files []*catalogueRow, ch *Channel) (torn [2]*catalogueRow) {
 	if ch.Orientation.Axis != AxisUnknown {
-		return
+		return torn
 	}
 	var only *catalogueRow
 	for _, row := range files {
-		if row.component == "" {
-			continue
+		switch {
+		case row.component == "":
+		case only == nil:
+			only = row
+		case !sameComponent(only.component, row.component):
+			return [2]*catalogueRow{only, row}
 		}
-		if only != nil {
-			return
-		}
-		only = row
 	}
 	if only != nil {
 		if o, ok := direction(only.component); ok {
 			ch.Orientation = o
 		}
 	}
+	return torn
+}
+
+// sameComponent reports whether two cells name one direction.
+func sameComponent(a, b string) bool {
+	one, okOne := direction(a)
+	other, okOther := direction(b)
+	return strings.EqualFold(a, b) || okOne && okOther && one.same(other)
 }
 
 // fits reports whether the row is not restricted to another direction.

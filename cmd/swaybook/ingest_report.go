@@ -98,6 +98,7 @@ func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) i
 		for _, column := range c.UnknownColumns {
 			r.Catalogue = append(r.Catalogue, "unknown column "+column.String())
 		}
+		r.Catalogue = append(r.Catalogue, c.Notes()...)
 		// After a run that was stopped, rows of the files not reached are no news.
 		if complete {
 			for _, line := range c.Unmatched() {
