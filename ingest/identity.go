@@ -133,7 +133,8 @@ func clean(s, also string, limit int) string {
 var directionWords = map[string]Orientation{
 	"N": azimuth(0), "E": azimuth(90), "S": azimuth(180), "W": azimuth(270),
 	"NORTH": azimuth(0), "EAST": azimuth(90), "NS": azimuth(0), "EW": azimuth(90), "N-S": azimuth(0), "E-W": azimuth(90),
-	"L": ranked(1), "T": ranked(2), "LONG": ranked(1), "TRAN": ranked(2), "TRANS": ranked(2),
+	"NORTH-SOUTH": azimuth(0), "EAST-WEST": azimuth(90),
+	"L": ranked(1), "T": ranked(2), "LONGITUDINAL": ranked(1), "TRANSVERSE": ranked(2), "LONG": ranked(1), "TRAN": ranked(2), "TRANS": ranked(2),
 	"H1": ranked(1), "H2": ranked(2), "1": ranked(1), "2": ranked(2),
 	"V": vertical, "Z": vertical, "U": vertical, "UD": vertical, "U-D": vertical, "UP": vertical, "VER": vertical,
 	"VRT": vertical, "VERT": vertical, "VERTICAL": vertical, "DN": vertical, "DWN": vertical, "DOWN": vertical,

@@ -87,7 +87,7 @@ func peakQuantity(text string) (v float64, unit string, ok bool) {
 // It returns nil where none does, where names say that the lines are rows, and
 // where what begins the lines rises like a time.
 func (h *plainHead) wrapped(t *Text, form numberForm) (*plainRows, error) {
-	if _, named, err := h.named(form); form.fields < 2 || named || err != nil {
+	if columns, err := h.named(form); form.fields < 2 || columns != nil || err != nil {
 		return nil, nil // columns says what is wrong with names
 	}
 	count, first := h.announced(t, form)

@@ -3,6 +3,7 @@ package ingest
 import (
 	"bytes"
 	"math"
+	"slices"
 	"strings"
 )
 
@@ -10,13 +11,9 @@ import (
 type plainHead struct {
 	first    int // line of the first numbers
 	comments []comment
-	// names is the text of the line directly before the numbers, a header row
-	// perhaps, and namesLine its number, 0 where there is none.
-	names     string
-	namesLine int
-	// sure says that names is no comment: it may fail to name columns, but then
-	// it must not hide a value.
-	sure bool
+	// lines are the lines before the numbers that are not blank, the last of names
+	// perhaps.
+	lines []heading
 }
 
 // comment is one key and value of a comment line.
@@ -60,18 +57,21 @@ func readPlainHead(t *Text) (*plainHead, error) {
 		if len(bytes.TrimSpace(line)) == 0 {
 			continue
 		}
-		h.names, h.namesLine, h.sure = strings.TrimSpace(latin(line)), n, !isComment(line)
-		if len(line) > maxHeading {
-			h.names, h.namesLine = "", 0
-			continue
+		l := heading{"", n, !isComment(line)}
+		if len(line) <= maxHeading {
+			l.text = strings.TrimSpace(latin(line))
 		}
-		if !h.sure {
-			h.names = strings.TrimSpace(strings.TrimLeft(h.names, "#%!;*/\""))
-			h.comments = append(h.comments, splitComment(h.names, n)...)
+		if !l.sure {
+			l.text = strings.TrimSpace(strings.TrimLeft(l.text, "#%!;*/\""))
+			h.comments = append(h.comments, splitComment(l.text, n)...)
 		}
+		h.lines = append(h.lines, l)
 	}
-	if _, values := likeNumbers([]byte(h.names)); values && h.sure && h.namesLine > 0 {
-		return nil, refuse(h.namesLine, "samples", "%s", badLine(t.Bytes(h.namesLine)))
+	if n := len(h.lines); n > 0 && h.lines[n-1].sure && h.lines[n-1].text != "" {
+		last := h.lines[n-1]
+		if _, values := likeNumbers([]byte(last.text)); values {
+			return nil, refuse(last.line, "samples", "%s", badLine(t.Bytes(last.line)))
+		}
 	}
 	return h, nil
 }
@@ -81,11 +81,8 @@ func readPlainHead(t *Text) (*plainHead, error) {
 func splitComment(text string, line int) []comment {
 	text = strings.TrimRight(text, "\" ")
 	parts := strings.FieldsFunc(text, func(r rune) bool { return r == ',' || r == ';' })
-	for _, p := range parts {
-		if !strings.Contains(p, "=") {
-			parts = []string{text}
-			break
-		}
+	if slices.ContainsFunc(parts, func(p string) bool { return !strings.Contains(p, "=") }) {
+		parts = []string{text}
 	}
 	var out []comment
 	for _, p := range parts {
