@@ -63,6 +63,9 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 	if err != nil {
 		return nil, err
 	}
+	if err := head.checkOthers(t); err != nil {
+		return nil, err
+	}
 	if err := head.checkRepeats(); err != nil {
 		return nil, err
 	}
@@ -167,7 +170,14 @@ func warnOffset(c *Channel) {
 // unit joins what the column's name and the comments say with the hints.
 func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 	comment := h.stated(unitKeys...)
-	if col.unit.text == "" {
+	switch {
+	case col.unit.text != "":
+	case comment.text != "" || hints.Unit == "":
+		return chooseUnit(comment, hints)
+	default:
+		if err := h.checkUnit(hints); err != nil {
+			return Unit{}, "", err
+		}
 		return chooseUnit(comment, hints)
 	}
 	if comment.text != "" {
@@ -214,7 +224,7 @@ func (h *plainHead) step(columns []plainColumn, rows *plainRows, hints Hints) (f
 	case stated != 0:
 		return stated, checkStep(stated, line, hints)
 	case hints.StepS != 0:
-		return hints.StepS, nil
+		return hints.StepS, h.checkStep(hints)
 	}
 	return 0, refuse(0, "dt", "the file states no time step: give it with --dt or in the catalogue's dt_s column")
 }

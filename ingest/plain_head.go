@@ -63,9 +63,9 @@ func readPlainHead(t *Text) (*plainHead, error) {
 		}
 		if !l.sure {
 			l.text = strings.TrimSpace(strings.TrimLeft(l.text, "#%!;*/\""))
-			h.comments = append(h.comments, splitComment(l.text, n)...)
 		}
 		h.lines = append(h.lines, l)
+		h.comments = append(h.comments, l.statements()...)
 	}
 	if n := len(h.lines); n > 0 && h.lines[n-1].sure && h.lines[n-1].text != "" {
 		last := h.lines[n-1]

@@ -189,7 +189,7 @@ func TestPlainRefusals(t *testing.T) {
 		{"no unit", values, Hints{StepS: 0.01}, `case: unit: the file states no unit: give it with --unit or in the catalogue's unit column`},
 		{"no step", values, unit, `case: dt: the file states no time step: give it with --dt or in the catalogue's dt_s column`},
 		{"unit disagrees", head([]string{"# unit: gal"}, values), known, `case:1: unit: the file says gal, --unit says g`},
-		{"units disagree", head([]string{"# unit: gal", "acc (g)"}, values), Hints{StepS: 0.01}, `case:2: unit: the column says g, the comment on line 1 says gal`},
+		{"units disagree", head([]string{"# unit: gal", "time,acc (g)"}, timed(even(20, 0.01), "%.2f", ",")), Hints{}, `case:2: unit: the column says g, the comment on line 1 says gal`},
 		{"unit unknown", head([]string{"acc (bar)"}, values), Hints{StepS: 0.01}, `case:1: unit: unknown unit "bar"; known are g, mg, m/s2, cm/s2, gal, mm/s2, in/s2, ft/s2`},
 		{"counts", head([]string{"# unit = counts"}, values), known, `case:1: unit: raw counts need a scale; convert them to a unit of acceleration first`},
 		{"step disagrees", head([]string{"# dt = 0.02"}, values), known, `case:1: dt: the file says 0.02 s, --dt says 0.01 s`},
@@ -245,22 +245,6 @@ func TestPlainRefusals(t *testing.T) {
 		{"over-long line", []string{strings.Repeat("1", MaxLine+1)}, known, `case:1: line of 1048577 bytes is longer than the limit of 1048576`},
 		{"prose", []string{"The quick brown fox", "jumps over 13 lazy dogs."}, known, `case:1: unknown format: found "The quick brown fox"; no reader recognises this content`},
 	})
-}
-
-// TestPlainKeywordHeader has a header of keywords that are no comments: what it
-// says of unit and step is not taken on trust.
-func TestPlainKeywordHeader(t *testing.T) {
-	lines := []string{"STATION= CDH9", "LAT.= 30.5", "SAMPLING RATE= 100Hz", "UNIT  = gal(cm/s/s)", "INITIAL TIME = 2041 03 04 08 12 00", "NS,EW,UD"}
-	for i, v := range column(20, "%.3f") {
-		lines = append(lines, fmt.Sprintf("%s,%d,%d", v, i%7-3, i%5-2))
-	}
-	checkRefusals(t, []refusal{
-		{"silent", lines, Hints{StepS: 0.01}, `case: unit: the file states no unit: give it with --unit or in the catalogue's unit column`},
-	})
-	_, channels, err := parseLines(lines, Hints{Unit: "gal", StepS: 0.01})
-	if err != nil || len(channels) != 3 || short(channels[1].Orientation) != "h 90" {
-		t.Errorf("with hints: %d channels, %v", len(channels), err)
-	}
 }
 
 func TestPlainNotMotion(t *testing.T) {

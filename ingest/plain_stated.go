@@ -1,0 +1,140 @@
+package ingest
+
+import (
+	"math"
+	"regexp"
+	"slices"
+	"strings"
+)
+
+// statements returns the keys and values of a line, and what it says of the numbers
+// in words alone: "acceleration in gal", "200 samples per second".
+func (l heading) statements() []comment {
+	out := splitComment(l.text, l.line)
+	for i, c := range out {
+		if slices.Contains(unitKeys, c.key) {
+			out[i].value = oneUnit(c.value)
+		}
+	}
+	if base, unit := splitUnit(l.text); slices.Contains(accelerationNames, commentKey(base)) {
+		if _, err := ParseUnit(unit); err == nil {
+			out = append(out, comment{"unit", unit, l.line})
+		}
+	}
+	if m := rateInWords.FindStringSubmatch(l.text); m != nil {
+		out = append(out, comment{"rate", m[1], l.line})
+	}
+	return out
+}
+
+// oneUnit returns the first of a unit and its other name in brackets, gal(cm/s/s),
+// where they mean the same.
+func oneUnit(text string) string {
+	name, other, two := strings.Cut(strings.TrimSuffix(text, ")"), "(")
+	if two && sameStatement(name, other) {
+		return strings.TrimSpace(name)
+	}
+	return text
+}
+
+// How lines speak of units, rates and steps. Of the letter g alone the small one is
+// meant, or any in brackets.
+var (
+	rateInWords = regexp.MustCompile(`(?i)^([\d.]+) *(?:samples|points|readings) *(?:per|/) *s(?:ec(?:onds?)?)?\.?$`)
+
+	unitMentions = []*regexp.Regexp{
+		regexp.MustCompile(`(?i)(?:^|[^\pL\d])((?:cm|mm|m|in|ft) *(?:/ *s(?:ec)? *(?:(?:\^|\*\*)? *2|²|/ *s(?:ec)?)|s?[ ·]*s\^?[-−⁻][2²]|ps2|s2)|gals?|mg|milli-?g)(?:$|[^\pL\d])`),
+		regexp.MustCompile(`(?:^|[\s=/,:;])(g)(?:$|[\s),;.\]])`),
+		regexp.MustCompile(`[(\[] *([gG]) *[)\]]`),
+		regexp.MustCompile(`(?i)(?:\bin|\bof|\bunits?:?) +(g'?s?)(?:$|[\s),;.\]])`),
+	}
+	rateMentions = []*regexp.Regexp{
+		regexp.MustCompile(`(?i)([\d.]+) *(?:sps\b|(?:samples|points|readings) *(?:per|/) *s)`),
+		regexp.MustCompile(`(?i)(?:\bsampl|\brate\b|\bdigiti|\bfs\b)[^\d.]*([\d.]+) *hz`),
+		regexp.MustCompile(`(?i)(?:sampling|sample) *(?:rate|frequency)[^\d.]{0,20}([\d.]+)`),
+		regexp.MustCompile(`(?i)\bfs\b[^\d.]{0,5}([\d.]+)`),
+		regexp.MustCompile(`(?i)^([\d.]+) *hz$`),
+	}
+	stepMentions = []*regexp.Regexp{
+		regexp.MustCompile(`(?i)(?:\bdt\b|\bdelta[ _]?t\b|Δt|\btime[ _-]?step|\bstep\b|intervals?\b|sampling[ _-]?period)[^\d.]{0,20}(\d*\.?\d+(?:e[-+]?\d+)?)( *ms| *msec| *milli)?`),
+		regexp.MustCompile(`(?i)(\d*\.?\d+)( *ms| *msec| *milli)?[a-z ]{0,8} (?:intervals?|steps?|apart)\b`),
+	}
+)
+
+// checkUnit refuses a unit that only hints state where a line that is not understood
+// speaks of another.
+func (h *plainHead) checkUnit(hints Hints) error {
+	hint, err := ParseUnit(hints.Unit)
+	if err != nil {
+		return nil // chooseUnit says so
+	}
+	for _, l := range h.lines {
+		if l.states(peakKeys) {
+			continue
+		}
+		for _, m := range mentions(unitMentions, l.text) {
+			if unit, err := ParseUnit(strings.ReplaceAll(m[1], "ms2", "m/s2")); err == nil && unit.MPS2 != hint.MPS2 {
+				return refuse(l.line, "unit", "%s speaks of %s, %s says %s: state the unit as # unit: …", found(l.text), unit.Name, orElse(hints.UnitFrom, "the hint"), hint.Name)
+			}
+		}
+	}
+	return nil
+}
+
+// states reports whether the line has one of the keys.
+func (l heading) states(keys []string) bool {
+	return slices.ContainsFunc(l.statements(), func(c comment) bool { return slices.Contains(keys, c.key) })
+}
+
+// checkStep refuses a step that only hints state where a line that is not understood
+// speaks of another. What is no step of a record counts something else.
+func (h *plainHead) checkStep(hints Hints) error {
+	for _, l := range h.lines {
+		for _, m := range mentions(rateMentions, l.text) {
+			rate, ok := parseNumber([]byte(m[1]))
+			if ok && isOtherStep(1/rate, hints.StepS) {
+				return refuse(l.line, "dt", "%s speaks of %g samples a second, %s says a step of %.6g s: state it as # rate = …", found(l.text), rate, orElse(hints.StepFrom, "the hint"), hints.StepS)
+			}
+		}
+		for _, m := range mentions(stepMentions, l.text) {
+			step, ok := parseNumber([]byte(m[1]))
+			if m[2] != "" {
+				step /= 1000
+			}
+			if ok && isOtherStep(step, hints.StepS) {
+				return refuse(l.line, "dt", "%s speaks of a step of %.6g s, %s says %.6g s: state it as # dt = …", found(l.text), step, orElse(hints.StepFrom, "the hint"), hints.StepS)
+			}
+		}
+	}
+	return nil
+}
+
+// isOtherStep reports whether v in s can be a step of a record, and is not this one.
+func isOtherStep(v, step float64) bool {
+	return v >= MinStepS && v <= MaxStepS && math.Abs(v-step) > stepAgreement*v
+}
+
+// mentions returns what the patterns find in the text.
+func mentions(patterns []*regexp.Regexp, text string) (all [][]string) {
+	for _, pattern := range patterns {
+		all = append(all, pattern.FindAllStringSubmatch(text, -1)...)
+	}
+	return all
+}
+
+// checkOthers refuses a file whose lines before the numbers hold the header of
+// another format below some lines that are none of it.
+func (h *plainHead) checkOthers(t *Text) error {
+	for i, l := range h.lines {
+		if i == 0 || !l.sure {
+			continue
+		}
+		rest := &Content{Text: &Text{lines: t.lines[l.line-1:], endsLine: t.endsLine}}
+		for _, f := range formats {
+			if f.Sniff(rest) != "" {
+				return refuse(l.line, "", "from here on a file of the format %s: remove the lines before it", f.Info().Name)
+			}
+		}
+	}
+	return nil
+}
