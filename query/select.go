@@ -34,6 +34,8 @@ type picked struct {
 	// verticals are the vertical components by record.
 	verticals map[int64]*db.HeldComponent
 	screen    Screen
+	// versions are those among which load takes the best, none where all count.
+	versions versions
 	// ignoresBand says that ordinates outside the usable band count.
 	ignoresBand bool
 }
@@ -88,26 +90,25 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 			return nil, err
 		}
 	}
-	if err := p.dropRepeated(ctx, snapshot); err != nil {
+	if err := p.findRepeated(ctx, snapshot); err != nil {
 		return nil, err
 	}
 	return &p.picked, p.finish()
 }
 
-// dropRepeated leaves out the motions that another one holds in a better version,
-// or names that where all are asked for.
-func (p *picker) dropRepeated(ctx context.Context, snapshot *db.Snapshot) error {
+// findRepeated reads which motions are versions of one. Where all are asked for it names
+// the better one; of others load takes the best at every period.
+func (p *picker) findRepeated(ctx context.Context, snapshot *db.Snapshot) error {
 	versions, err := readVersions(ctx, snapshot)
 	if err != nil {
 		return err
 	}
-	repeated := versions.repeated(p.motions)
-	for i, code := range repeated {
-		p.motions[i].versionOf = code
-		repeated[i] = "another version of the motion is taken"
-	}
 	if !p.selection.IncludeDuplicates {
-		p.drop(repeated)
+		p.versions = versions
+		return nil
+	}
+	for i, code := range versions.repeated(p.motions) {
+		p.motions[i].versionOf = code
 	}
 	return nil
 }
@@ -276,12 +277,6 @@ func (p *picked) leaveOut(reasons map[int]string) error {
 	if len(reasons) == 0 {
 		return nil
 	}
-	p.drop(reasons)
-	return p.finish()
-}
-
-// drop is leaveOut without the account that finish gives.
-func (p *picked) drop(reasons map[int]string) {
 	type cause struct {
 		record int64
 		reason string
@@ -300,6 +295,7 @@ func (p *picked) drop(reasons map[int]string) {
 		}
 	}
 	p.motions = kept
+	return p.finish()
 }
 
 // finish counts what the motions are of. The error is an EmptyError where there is
@@ -349,6 +345,13 @@ func (p *picked) noteBand(partly, coarse int) {
 	}
 	if coarse > 0 {
 		p.report.Notes = append(p.report.Notes, countOf(coarse, "spectrum has", "spectra have")+" periods of fewer than ten steps, where it may be low: oversample by a recipe")
+	}
+}
+
+// noteStandIns says that versions complete one another.
+func (p *picked) noteStandIns(n int) {
+	if n > 0 {
+		p.report.Notes = append(p.report.Notes, countOf(n, "spectrum stands", "spectra stand")+" in for a better version at periods at which that cannot be believed")
 	}
 }
 

@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"maps"
 	"runtime"
 	"slices"
 	"sync"
@@ -51,8 +52,9 @@ func (s *source) details(periodsS []float64) db.Details {
 // damping and period are on its grid, computed from the stored samples
 // otherwise, and where the store lacks the spectrum of a rotated pair. What it
 // cannot give is left out of the selection, and so is what lies outside the usable band
-// at every period, or at that of position must where this is not negative; single
-// ordinates outside are NaN. The error is an EmptyError where nothing is left.
+// at every period, or at that of position must where this is not negative, and what counts
+// in a better version there; single ordinates outside, or of which a better version has
+// one, are NaN. The error is an EmptyError where nothing is left.
 func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must int) (*ordinates, error) {
 	o, unfit, err := s.loadMotions(ctx, p.motions, periodsS)
 	if err != nil {
@@ -68,9 +70,12 @@ func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must i
 			}
 		}
 	}
+	repeated, standIns := o.keepBest(p.versions.rivals(p.motions), must, unfit)
+	maps.Copy(unfit, repeated)
 	o = o.without(unfit)
 	err = p.leaveOut(unfit)
 	p.noteBand(partly, coarse)
+	p.noteStandIns(standIns)
 	return o, err
 }
 

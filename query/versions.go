@@ -15,7 +15,6 @@ import (
 type versions struct {
 	motion map[componentKey]int64
 	rank   map[int64]int // by record; none where no other holds one of its motions
-	code   map[int64]string
 }
 
 // componentKey is a component's record and role.
@@ -29,14 +28,13 @@ func readVersions(ctx context.Context, snapshot *db.Snapshot) (versions, error) 
 	if err != nil {
 		return versions{}, err
 	}
-	v := versions{motion: map[componentKey]int64{}, rank: map[int64]int{}, code: map[int64]string{}}
+	v := versions{motion: map[componentKey]int64{}, rank: map[int64]int{}}
 	byRecord := map[int64][]*db.Version{}
 	for i := range found {
 		c := &found[i]
 		if c.MotionID != 0 {
 			v.motion[componentKey{c.RecordID, c.Role}] = c.MotionID
 		}
-		v.code[c.RecordID] = c.RecordCode
 		byRecord[c.RecordID] = append(byRecord[c.RecordID], c)
 	}
 	for rank, id := range byPreference(byRecord) {
@@ -127,10 +125,16 @@ func usableBand(v *db.Version) float64 {
 	return math.Log(high / *v.LowCutHz)
 }
 
-// repeated returns, by position, the motions that one before them by preference
-// holds too, with the code of its record. A pair repeats what shares one of its
-// components.
-func (v *versions) repeated(motions []motion) map[int]string {
+// rival is a motion that shares a component's motion with others of another record: its
+// position, and those of the others that are preferred to it.
+type rival struct {
+	at        int
+	preferred []int
+}
+
+// rivals returns the motions to which others are preferred, in the order of preference. A
+// pair shares what one of its components does.
+func (v *versions) rivals(motions []motion) []rival {
 	if len(v.motion) == 0 {
 		return nil
 	}
@@ -146,28 +150,83 @@ func (v *versions) repeated(motions []motion) map[int]string {
 		motion int64
 		role   string // "" of single components: their roles may differ
 	}
-	taken := map[held]int64{} // the record that has it
-	out := map[int]string{}
+	holders := map[held][]int{}
+	var out []rival
 	for _, i := range order {
-		m := &motions[i]
+		m, r := &motions[i], rival{at: i}
 		role := ""
 		if len(m.members) > 1 {
 			role = m.role
 		}
-		ids := v.motionsOf(m)
-		for _, id := range ids {
-			if by, ok := taken[held{id, role}]; ok && by != record(i) {
-				out[i] = v.code[by]
+		for _, id := range v.motionsOf(m) {
+			key := held{id, role}
+			for _, j := range holders[key] {
+				if record(j) != record(i) && !slices.Contains(r.preferred, j) {
+					r.preferred = append(r.preferred, j)
+				}
 			}
+			holders[key] = append(holders[key], i)
 		}
-		if out[i] != "" {
-			continue
-		}
-		for _, id := range ids {
-			taken[held{id, role}] = record(i)
+		if len(r.preferred) > 0 {
+			out = append(out, r)
 		}
 	}
 	return out
+}
+
+// repeated returns, by position, the motions that another one stands for which is
+// preferred, with the code of its record.
+func (v *versions) repeated(motions []motion) map[int]string {
+	out := map[int]string{}
+	for _, r := range v.rivals(motions) {
+		for _, j := range r.preferred {
+			if out[j] == "" {
+				out[r.at] = motions[j].record()
+			}
+		}
+	}
+	return out
+}
+
+// reasonRepeated leaves out motions that count in a better version.
+const reasonRepeated = "another version of the motion is taken"
+
+// keepBest takes out, as NaN, at every period the ordinates of motions of which a preferred
+// version has one there. It returns the motions, by position, that have none left, or none
+// at the period of position must where that is not negative, and counts those that stand in
+// for a version at a part of the periods. What is unfit stands in nobody's way.
+func (o *ordinates) keepBest(rivals []rival, must int, unfit map[int]string) (without map[int]string, standIns int) {
+	without = map[int]string{}
+	for _, r := range rivals {
+		if _, isOut := unfit[r.at]; isOut {
+			continue
+		}
+		kept, lost := 0, 0
+		for p := range o.periodsS {
+			sd := o.at(p)
+			if math.IsNaN(sd[r.at]) {
+				continue
+			}
+			taken := slices.ContainsFunc(r.preferred, func(j int) bool {
+				_, isOut := unfit[j]
+				return !isOut && !math.IsNaN(sd[j])
+			})
+			if !taken {
+				kept++
+				continue
+			}
+			lost++
+			sd[r.at] = math.NaN()
+		}
+		switch {
+		case lost == 0:
+		case kept == 0, must >= 0 && math.IsNaN(o.at(must)[r.at]):
+			without[r.at] = reasonRepeated
+		default:
+			standIns++
+		}
+	}
+	return without, standIns
 }
 
 // motionsOf are the motions of the members that others hold too.

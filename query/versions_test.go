@@ -2,6 +2,7 @@ package query
 
 import (
 	"fmt"
+	"math"
 	"testing"
 	"time"
 
@@ -40,6 +41,35 @@ func TestByPreference(t *testing.T) {
 	if got, want := fmt.Sprint(byPreference(byRecord)), "[5 4 3 10 6 2 9 1 7 8]"; got != want {
 		t.Errorf("got %s, want %s", got, want)
 	}
+}
+
+// A version stands in at the periods at which the better one cannot be believed, and
+// nowhere else.
+func TestVersionsCompleteOneAnother(t *testing.T) {
+	versions := []motion{motionOf(1, "A"), motionOf(2, "B"), motionOf(3, "C"), motionOf(4, "D")}
+	v := versions4()
+	nan := math.NaN()
+	o := &ordinates{periodsS: []float64{1, 2, 3}, motions: 4, sd: []float64{
+		1, 2, 3, 4,
+		nan, 2, 3, 4,
+		nan, nan, 3, nan,
+	}}
+	without, standIns := o.keepBest(v.rivals(versions), -1, map[int]string{})
+	want := []float64{1, nan, nan, 4, nan, 2, nan, 4, nan, nan, 3, nan}
+	if fmt.Sprint(o.sd) != fmt.Sprint(want) || standIns != 2 || len(without) != 0 {
+		t.Errorf("%v, %d stand in, without %v; want %v, 2, none", o.sd, standIns, without, want)
+	}
+}
+
+// motionOf is a motion of one component of the record.
+func motionOf(record int64, code string) motion {
+	return motion{role: db.RoleH1, members: []*db.HeldComponent{{RecordID: record, Record: &db.Record{Code: code}, Component: db.Component{Role: db.RoleH1}}}}
+}
+
+// versions4 says that records 1, 2 and 3, preferred in this order, hold one motion.
+func versions4() *versions {
+	key := func(record int64) componentKey { return componentKey{record, db.RoleH1} }
+	return &versions{motion: map[componentKey]int64{key(1): 7, key(2): 7, key(3): 7}, rank: map[int64]int{1: 0, 2: 1, 3: 2}}
 }
 
 // Of versions statistics take the best of those that a question is about: one that
