@@ -1,6 +1,7 @@
 package query
 
 import (
+	"fmt"
 	"io"
 	"strconv"
 	"strings"
@@ -45,11 +46,36 @@ func (a *RecordsAnswer) table() []byte {
 		t.add(r.Record, r.Component, orDash(r.Event), shortOrDash(r.Magnitude), orDash(r.Station), figure(orNaN(r.DistanceKM)),
 			r.Siting, shortest(r.StepS), strconv.Itoa(r.Samples), figure(r.PGA), figure(r.PGV), figure(r.PGD), r.Format)
 	}
-	text := t.appendTo(nil)
+	text := append(t.appendTo(nil), a.findings()...)
 	if remarks := a.Selection.Remarks(); remarks != "" {
 		text = append(append(text, '\n'), remarks...)
 	}
 	return text
+}
+
+// mostFindings is how many rows' findings follow a table: more are for a file.
+const mostFindings = 20
+
+// findings are the sentences of the rows of which something was found, "" for none.
+func (a *RecordsAnswer) findings() string {
+	var b strings.Builder
+	with := 0
+	for i := range a.Rows {
+		r := &a.Rows[i]
+		if len(r.Quality) == 0 {
+			continue
+		}
+		if with++; with <= mostFindings {
+			fmt.Fprintf(&b, "  %s %s: %s\n", r.Record, r.Component, r.qualityWords())
+		}
+	}
+	switch {
+	case with == 0:
+		return ""
+	case with > mostFindings:
+		fmt.Fprintf(&b, "  and in %d more: --format csv or json has all\n", with-mostFindings)
+	}
+	return "\nFound in " + countOf(with, "row", "rows") + ":\n" + b.String()
 }
 
 // recordsHeader names the columns as the fields of JSON are named.

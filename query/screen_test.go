@@ -3,6 +3,7 @@ package query
 import (
 	"errors"
 	"fmt"
+	"strings"
 	"testing"
 
 	"swaybook/db"
@@ -131,5 +132,20 @@ func TestQualityInExpressions(t *testing.T) {
 	list, err := RecordsQuestion{Selection: Selection{Where: `quality.drift`, Component: ComponentRotD50}}.Ask(t.Context(), store)
 	if err != nil || len(list.Rows) != 1 || list.Rows[0].Record != "R_drift" || list.Rows[0].Quality[0].Flag != "drift" || list.Rows[0].qualityWords() != "drift: invented" {
 		t.Errorf("of a pair: %+v, %v", list, err)
+	}
+}
+
+// TestFindingsBelowTheTable: a table has the sentences of the first rows and counts the rest.
+func TestFindingsBelowTheTable(t *testing.T) {
+	answer := &RecordsAnswer{Rows: []RecordRow{{Record: "calm", Component: "h1"}}}
+	if got := answer.findings(); got != "" {
+		t.Errorf("nothing found: %q", got)
+	}
+	for i := range mostFindings + 2 {
+		answer.Rows = append(answer.Rows, RecordRow{Record: fmt.Sprint("R", i), Component: "h1", Quality: []FindingRow{{Flag: "spikes", Words: "two samples stand out"}}})
+	}
+	lines := strings.Split(answer.findings(), "\n")
+	if lines[1] != "Found in 22 rows:" || lines[2] != "  R0 h1: spikes: two samples stand out" || lines[22] != "  and in 2 more: --format csv or json has all" || len(lines) != 24 {
+		t.Errorf("%q", lines)
 	}
 }

@@ -106,6 +106,7 @@ var wordings = []struct {
 	{regexp.MustCompile(`\bint\b`), "whole number"},
 	{regexp.MustCompile(`unexpected token Operator\("="\)`), `"=" is no comparison, write "=="`},
 	{regexp.MustCompile(`\bbool\b`), "true-or-false"},
+	{regexp.MustCompile(`type query\.qualityFlags has no field (\w+)`), `there is no finding "$1"`},
 }
 
 // unknown returns the name of the first attribute that the expression uses and

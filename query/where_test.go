@@ -79,6 +79,7 @@ func TestWhereMistakes(t *testing.T) {
 		{"magnitude >", "where: unexpected token EOF (at character 11)"},
 		{"magnitude > 6 and", "where: unexpected token EOF (at character 17)"},
 		{"station.code == 'A'", "where: type string has no field code"},
+		{"quality.torn", `where: there is no finding "torn"`},
 		{"now() > magnitude", "where: unknown name now"},
 		{"repeat(record, 1000000) == ''", "where: unknown name repeat"},
 		{"fromJSON(record) == 1", "where: unknown name fromJSON"},
