@@ -268,8 +268,8 @@ var roleTables = append([]string{"component"}, computedTables...)
 
 // MoveComponents gives components of one record, by their roles, to another, where they
 // have the roles that these are the keys of, with their spectra and measures. What their
-// files, by paths, state of the record is stated of both: of equal statements one file's is
-// kept. What was rotated of either record's horizontals is removed.
+// files, by paths, state of the record goes along, and stays where nothing that stays says
+// otherwise: of equal statements one file's is kept. What was rotated of either record's horizontals is removed.
 func (t *Tx) MoveComponents(ctx context.Context, from, to int64, roles map[string]string, paths []string) error {
 	for _, id := range []int64{from, to} {
 		if err := t.forgetRotated(ctx, id); err != nil {
@@ -286,8 +286,14 @@ func (t *Tx) MoveComponents(ctx context.Context, from, to int64, roles map[strin
 	for _, path := range paths {
 		err := t.exec(ctx, `INSERT INTO statement SELECT subject, ?, attribute, stated_by, value, source FROM statement
 			WHERE subject = ? AND subject_id = ? AND source = ? ON CONFLICT DO NOTHING`, to, SubjectRecord, from, path)
+		if err == nil {
+			err = t.exec(ctx, `DELETE FROM statement WHERE subject = ?1 AND subject_id = ?2 AND source = ?3 AND EXISTS (
+				SELECT 1 FROM component c JOIN source_file f ON f.id = c.source_id JOIN statement o ON o.source = f.path
+				WHERE c.record_id = ?2 AND o.subject = ?1 AND o.subject_id = ?2 AND o.attribute = statement.attribute AND o.stated_by = statement.stated_by)`,
+				SubjectRecord, from, path)
+		}
 		if err != nil {
-			return fmt.Errorf("copy statements: %w", err)
+			return fmt.Errorf("move statements: %w", err)
 		}
 	}
 	return nil

@@ -71,9 +71,8 @@ func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (place
 // record itself or one of code_v2, code_v3 …. rival is the component of another
 // sensor that has the channel's direction.
 func placeVersion(ctx context.Context, tx *db.Tx, code string, res result, c *ingest.Channel) (p placement, rival *db.Component, err error) {
-	var parted *db.StoredRecord // from what came with the channel, by another that has its direction
-	best, nearest := db.StoredRecord{}, -1
-	for n := 1; nearest < nearestOf(res); n++ {
+	var found versionsFound
+	for n := 1; found.nearest < nearestOf(res); n++ {
 		version := code
 		if n > 1 {
 			version = fmt.Sprintf("%s_v%d", code, n)
@@ -83,41 +82,73 @@ func placeVersion(ctx context.Context, tx *db.Tx, code string, res result, c *in
 			return p, nil, err
 		}
 		if !held {
-			if nearest < 0 {
-				best = db.StoredRecord{Code: version}
-			}
+			found.free = version
 			break
 		}
 		if !isSameVersion(r, res, c) {
 			continue
 		}
 		_, rival := join(r, c)
-		if rival == nil {
-			if near := nearness(r.Components, res); near > nearest {
-				best, nearest = r, near
-			}
-			continue
-		}
 		switch {
+		case rival == nil:
 		case isAmended(rival, res.source) || hasNoDirection(rival, c) || n > maxVersions:
 			return p, nil, takenError(version, *rival, res.source, c)
 		case c.ChannelCode != "" && rival.Channel != c.ChannelCode:
 			return p, rival, nil
-		case nearness(r.Components, res) > nearness([]db.Component{*rival}, res):
-			parted = &r
 		}
+		found.add(&r, rival, res, c)
 	}
-	p, rival = join(best, c)
-	if parted != nil && nearness(parted.Components, res) > nearest {
-		p = bringAlong(*parted, best, res, c, p)
+	to := found.chosen()
+	p, rival = join(to, c)
+	if found.parted != nil {
+		p = bringAlong(*found.parted, to, res, c, p)
 	}
 	return p, rival, nil
 }
 
+// versionsFound are the versions of a record among which a channel has its place.
+type versionsFound struct {
+	near    *db.StoredRecord // the one that holds what is nearest to the channel's file
+	nearest int
+	parted  *db.StoredRecord // one in which what came with the channel cannot stay
+	isTaken bool             // the channel's direction, in one that holds what came with it
+	lone    *db.StoredRecord // the first of lone components of several deliveries
+	free    string           // the code of a new one
+}
+
+// add takes a version into account, in which the rival, nil for none, has the channel's
+// direction.
+func (f *versionsFound) add(r *db.StoredRecord, rival *db.Component, res result, c *ingest.Channel) {
+	switch near := nearness(r.Components, res); {
+	case near > elsewhere && (rival != nil && near > nearnessOf(rival, res) || rival == nil && hasOthers(r.Components, res)):
+		f.parted = r
+	case near > elsewhere && rival != nil:
+		f.isTaken = true
+	case near > f.nearest:
+		f.near, f.nearest = r, near
+	case rival == nil && f.lone == nil && areLone(r, res, c):
+		f.lone = r
+	}
+}
+
+// chosen is the version for the channel. Lone components of several deliveries, as of an
+// archive with a folder for each direction, stand together as long as no delivery has
+// another one.
+func (f *versionsFound) chosen() db.StoredRecord {
+	switch {
+	case f.near != nil:
+		return *f.near
+	case f.parted == nil && !f.isTaken && f.lone != nil:
+		return *f.lone
+	}
+	return db.StoredRecord{Code: f.free}
+}
+
 // How near to a file another one lies of which a record holds components.
 const (
-	elsewhere = iota
-	inOneFolder
+	elsewhere   = iota
+	inOneFolder // of one archive
+	ofOneStem   // with names that differ in the direction only
 	inOneFile
 )
 
@@ -134,10 +165,24 @@ func nearnessOf(c *db.Component, res result) int {
 	switch {
 	case c.SourcePath == res.source.Path:
 		return inOneFile
-	case archive.Folder(c.SourcePath) == archive.Folder(res.source.Path):
-		return inOneFolder
+	case archive.Folder(c.SourcePath) != archive.Folder(res.source.Path):
+		return elsewhere
+	case baseStem(memberStem(c.SourcePath)) == baseStem(res.stem):
+		return ofOneStem
 	}
-	return elsewhere
+	return inOneFolder
+}
+
+// baseStem is the part of a stem that the components of one record share.
+func baseStem(stem string) string {
+	base, _ := ingest.SplitStem(stem)
+	return base
+}
+
+// memberStem is the stem of a file, or of a member of an archive.
+func memberStem(file string) string {
+	parts := archive.Split(file)
+	return stemOf(parts[len(parts)-1])
 }
 
 // nearestOf is the nearness beyond which nothing can be for a channel of the file.
@@ -145,14 +190,31 @@ func nearestOf(res result) int {
 	if len(res.channels) > 1 {
 		return inOneFile
 	}
-	return inOneFolder
+	return ofOneStem
+}
+
+// hasOthers reports whether some lie elsewhere.
+func hasOthers(components []db.Component, res result) bool {
+	return slices.ContainsFunc(components, func(c db.Component) bool { return nearnessOf(&c, res) == elsewhere })
+}
+
+// areLone reports whether the channel and each of the record's components are the only one
+// of their deliveries, and all of them say when they start or none does.
+func areLone(r *db.StoredRecord, res result, c *ingest.Channel) bool {
+	folders := map[string]bool{}
+	for _, held := range r.Components {
+		folders[archive.Folder(held.SourcePath)] = true
+	}
+	return len(res.channels) == 1 && len(folders) == len(r.Components) && r.Start.IsZero() == c.Start.IsZero()
 }
 
 // bringAlong lets what came with the channel c leave the record in which another has c's
 // direction, for the record to which c goes as p says, unless that has no place for it.
 func bringAlong(parted, to db.StoredRecord, res result, c *ingest.Channel, p placement) placement {
-	_, rival := join(parted, c)
-	least := nearnessOf(rival, res) + 1
+	least := inOneFolder
+	if _, rival := join(parted, c); rival != nil {
+		least = nearnessOf(rival, res) + 1
+	}
 	var leaves, stays []db.Component
 	from := departure{recordID: parted.ID}
 	for i, held := range parted.Components {

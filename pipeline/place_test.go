@@ -125,17 +125,33 @@ func TestPlace(t *testing.T) {
 func TestPlaceTogether(t *testing.T) {
 	noon := time.Date(2026, 3, 12, 12, 0, 0, 0, time.UTC)
 	north, east, up := at(horizontal(0), "", noon), at(horizontal(90), "", noon), at(vertical, "", noon)
-	folders := []delivery{{"x/N", []ingest.Channel{north}}, {"y/N", []ingest.Channel{north}}, {"y/E", []ingest.Channel{east}}, {"y/Z", []ingest.Channel{up}}}
-	files := []delivery{{"x/one", []ingest.Channel{east}}, {"x/all", []ingest.Channel{north, east, up}}}
+	single := func(paths ...string) (out []delivery) {
+		direction := map[byte]ingest.Channel{'N': north, 'E': east, 'Z': up}
+		for _, p := range paths {
+			out = append(out, delivery{p, []ingest.Channel{direction[p[len(p)-1]]}})
+		}
+		return out
+	}
+	unstarted := single("y/N", "y/E")
+	for i := range unstarted {
+		unstarted[i].channels[0].Start = time.Time{}
+	}
+	later := single("z/Z")
+	later[0].channels[0].Start = noon.Add(2 * time.Minute)
 	for _, tt := range []struct {
 		name  string
 		files []delivery
 		want  string
 	}{
-		{"folders", folders, "[x/N] [y/E y/N y/Z]"},
-		{"files of a folder", files, "[x/all x/all x/all] [x/one]"},
+		{"two folders, one lacks a horizontal", single("x/N", "y/N", "y/E", "y/Z"), "[x/N] [y/E y/N y/Z]"},
+		{"three folders that lack something", single("x/N", "x/E", "y/E", "y/Z", "z/N", "z/Z"), "[x/E x/N] [y/E y/Z] [z/N z/Z]"},
+		{"a folder for each direction", single("N/N", "E/E", "Z/Z"), "[E/E N/N Z/Z]"},
+		{"two in one folder", single("x/a_N", "x/a_E", "x/b_N", "x/b_E"), "[x/a_E x/a_N] [x/b_E x/b_N]"},
+		{"one that states no start, and a later one", append(append(single("x/N", "x/E"), unstarted...), later...), "[x/E x/N] [y/E y/N] [z/Z]"},
+		{"files of a folder", []delivery{{"x/one", []ingest.Channel{east}}, {"x/all", []ingest.Channel{north, east, up}}}, "[x/all x/all x/all] [x/one]"},
+		{"a file, and single ones", append(single("x/Z"), delivery{"x/both", []ingest.Channel{north, east}}, single("y/E")[0]), "[x/Z x/both x/both] [y/E]"},
 	} {
-		for range 12 {
+		for range 8 {
 			rand.Shuffle(len(tt.files), func(i, j int) { tt.files[i], tt.files[j] = tt.files[j], tt.files[i] })
 			if got := together(t, tt.files); got != tt.want {
 				t.Errorf("%s in the order %v: %s, want %s", tt.name, tt.files, got, tt.want)
@@ -164,7 +180,7 @@ func together(t *testing.T, files []delivery) string {
 	for _, f := range files {
 		res := result{source: db.Source{Path: f.path, SHA256: f.path, Format: "invented"}, rel: f.path, stem: stemOf(f.path), outcome: Stored}
 		for i, c := range f.channels {
-			c.DistanceKM = ingest.Known(float64(len(f.path)))
+			c.DistanceKM = ingest.Known(float64(f.path[0]))
 			res.channels = append(res.channels, solved{channel: c, samples: 1, digest: f.path, data: []byte{0},
 				accounts: []account{{by: db.ByHeader, source: f.path, channel: c}},
 				spectra:  db.NewSpectra(nil, map[string]float64{db.MeasurePGA: c.Orientation.AzimuthDeg.Value, db.MeasurePGV: float64(i), db.MeasurePGD: 1}, nil)})
@@ -173,14 +189,17 @@ func together(t *testing.T, files []delivery) string {
 			t.Fatal(err)
 		}
 	}
-	records := map[string][]string{}
+	records, distances := map[string][]string{}, map[string]*float64{}
 	for _, c := range componentsOf(t, store) {
 		records[c.Record.Code] = append(records[c.Record.Code], c.SourcePath)
 		if want := orientationOf(c.Component).AzimuthDeg.Value; c.Peaks.PGA != want {
 			t.Errorf("%v: %s %s has the PGA %v, want %v", files, c.Record.Code, c.Role, c.Peaks.PGA, want)
 		}
-		if c.Record.Distances.BestKM == nil || *c.Record.Distances.BestKM != float64(len(c.SourcePath)) {
-			t.Errorf("%v: %s %s of %s has the distance %v", files, c.Record.Code, c.Role, c.SourcePath, c.Record.Distances.BestKM)
+		distances[c.Record.Code] = c.Record.Distances.BestKM
+	}
+	for code, km := range distances {
+		if km == nil || !slices.ContainsFunc(records[code], func(path string) bool { return float64(path[0]) == *km }) {
+			t.Errorf("%v: %s of %v has a distance that none of them states", files, code, records[code])
 		}
 	}
 	var out []string
