@@ -41,7 +41,7 @@ const (
 	restS       = 5.0  // between two events
 	quietShare  = 0.05 // of the greatest, at rest
 	againShare  = 0.3  // of the greatest, of another event
-	leastSignal = 10.0 // PGA over the standard deviation of the noise
+	leastSignal = 10.0 // the peak over the standard deviation of the noise
 )
 
 // Assess returns what is found in acceleration in m/s², stepS apart in s, whose motion
@@ -52,9 +52,11 @@ func Assess(acceleration []float64, stepS float64, onset int) []Finding {
 		return nil
 	}
 	a := &assessment{x: acceleration, stepS: stepS, onset: onset, peak: signal.Greatest(acceleration)}
+	a.y = settled(a.x, a.stepS)
 	a.levels()
 	a.rest()
 	a.extent()
+	a.standsOut()
 	return a.found
 }
 
@@ -73,6 +75,7 @@ func AssessConditioned(acceleration []float64, stepS float64, onset int) []Findi
 
 type assessment struct {
 	x     []float64
+	y     []float64 // x without drift
 	stepS float64
 	onset int
 	peak  float64
@@ -147,61 +150,4 @@ func (a *assessment) restOf(v []float64) {
 	if share := math.Abs(signal.Mean(last)) / signal.Greatest(v); share > restShare {
 		a.add(FlagDrift, share, restShare, "the displacement drifts at the end by %.2g of PGV", share)
 	}
-}
-
-// extent looks at where the motion begins, ends and comes back, by root mean squares of
-// windows about the mean.
-func (a *assessment) extent() {
-	quietS := float64(a.onset) * a.stepS
-	if quietS < preEventS {
-		a.add(FlagNoPreEvent, quietS, preEventS, "%.2g s before the arrival", quietS)
-	}
-	rms := a.windows()
-	if len(rms) < 3 {
-		return
-	}
-	top := signal.Greatest(rms)
-	if s := rms[0] / top; s > startShare {
-		a.add(FlagLateStart, s, startShare, "the first second has %.2g of the strongest second's root mean square", s)
-	}
-	if e := rms[len(rms)-1] / top; e > endShare {
-		a.add(FlagEarlyEnd, e, endShare, "the last second has %.2g of the strongest second's root mean square", e)
-	}
-	if at, ok := again(rms, top); ok {
-		a.add(FlagSeveralEvents, float64(at)*windowS, restS, "strong motion again %d s from the first sample, after rest", at)
-	}
-	if quietS >= preEventS {
-		quiet := a.x[:a.onset]
-		if s := a.peak / math.Sqrt(squaresAbout(quiet, signal.Mean(quiet))/float64(len(quiet))); s < leastSignal {
-			a.add(FlagLowSignal, s, leastSignal, "PGA is %.2g times the noise before the arrival", s)
-		}
-	}
-}
-
-// windows are the root mean squares, second by second, of the samples about their mean.
-func (a *assessment) windows() []float64 {
-	n := max(1, int(math.Round(windowS/a.stepS)))
-	mean := signal.Mean(a.x)
-	var out []float64
-	for x := a.x; len(x) >= n; x = x[n:] {
-		out = append(out, math.Sqrt(squaresAbout(x[:n], mean)/float64(n)))
-	}
-	return out
-}
-
-// again returns the window in which strong motion comes back after restS of rest.
-func again(rms []float64, top float64) (at int, ok bool) {
-	strong, quiet := false, 0
-	for i, v := range rms {
-		switch {
-		case v >= againShare*top:
-			if strong && float64(quiet)*windowS >= restS {
-				return i, true
-			}
-			strong, quiet = true, 0
-		case v <= quietShare*top:
-			quiet++
-		}
-	}
-	return 0, false
 }
