@@ -15,12 +15,34 @@ func (a *assessment) standsOut() {
 	}
 }
 
-// noise is the standard deviation before the arrival, 0 where less than preEventS
-// precedes it.
+// noise is the standard deviation before the arrival, not less than that of rounding; 0
+// where less than preEventS precedes it.
 func (a *assessment) noise() float64 {
 	if a.quietS() < preEventS {
 		return 0
 	}
 	quiet := a.y[:a.onset]
-	return math.Sqrt(squaresAbout(quiet, signal.Mean(quiet)) / float64(len(quiet)))
+	return max(math.Sqrt(squaresAbout(quiet, signal.Mean(quiet))/float64(len(quiet))), a.rounding())
+}
+
+// rounding is the standard deviation of what rounding to the resolution adds: the
+// resolution over √12.
+//
+// Source: W. R. Bennett, Spectra of Quantized Signals, Bell System Technical Journal 27(3),
+// 1948 (from memory).
+func (a *assessment) rounding() float64 { return resolution(a.x) / math.Sqrt(12) }
+
+// resolution is the smallest step between neighbouring samples that is not zero, 0 where
+// there is none.
+func resolution(x []float64) float64 {
+	step := math.Inf(1)
+	for i := 1; i < len(x); i++ {
+		if d := math.Abs(x[i] - x[i-1]); d > 0 && d < step {
+			step = d
+		}
+	}
+	if math.IsInf(step, 1) {
+		return 0
+	}
+	return step
 }
