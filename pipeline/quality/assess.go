@@ -42,6 +42,9 @@ const (
 	quietShare  = 0.05 // of the greatest, at rest
 	againShare  = 0.3  // of the greatest, of another event
 	leastSignal = 10.0 // the peak over the standard deviation of the noise
+	unevenS     = 30.0 // of a record without noise before it, to tell it from noise
+	unevenParts = 8
+	uneven      = 1.5 // the strongest of them over the quietest, of noise
 )
 
 // Assess returns what is found in acceleration in m/s², stepS apart in s, whose motion

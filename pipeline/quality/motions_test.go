@@ -1,6 +1,7 @@
 package quality
 
 import (
+	"math"
 	"math/rand/v2"
 	"sync"
 
@@ -67,6 +68,24 @@ func edit(x []float64, add func(i, n int) float64) []float64 {
 func white(seed uint64, deviation float64) func(i, n int) float64 {
 	random := rand.New(rand.NewPCG(seed, 78))
 	return func(int, int) float64 { return deviation * random.NormFloat64() }
+}
+
+// pink is noise whose power falls with the frequency: a sum of noises that change half as
+// often from one to the next.
+func pink(seed uint64, deviation float64) func(i, n int) float64 {
+	const octaves = 10
+	random := rand.New(rand.NewPCG(seed, 79))
+	var held [octaves]float64
+	return func(i, _ int) float64 {
+		sum := 0.0
+		for k := range held {
+			if i%(1<<k) == 0 {
+				held[k] = random.NormFloat64()
+			}
+			sum += held[k]
+		}
+		return deviation * sum / math.Sqrt(octaves)
+	}
 }
 
 // after is the first sample up to which x has a share of its squares.
