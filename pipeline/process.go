@@ -6,6 +6,7 @@ import (
 	"encoding/hex"
 	"errors"
 	"math"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -219,14 +220,16 @@ func (r *reader) solve(s *solved, c ingest.Channel) error {
 }
 
 // findingsOf are what reading found and what the samples show, in which the motion arrives
-// at the sample arrival.
+// at the sample arrival, each flag once: data may be lost in the midst and at the end.
 func findingsOf(c *ingest.Channel, arrival int) []db.Finding {
 	var out []db.Finding
 	for _, f := range c.Findings {
 		out = append(out, db.Finding(f))
 	}
 	for _, f := range quality.Assess(c.Acceleration, c.StepS, arrival) {
-		out = append(out, db.Finding(f))
+		if !slices.ContainsFunc(out, func(g db.Finding) bool { return g.Flag == f.Flag }) {
+			out = append(out, db.Finding(f))
+		}
 	}
 	return out
 }

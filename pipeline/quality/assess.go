@@ -9,6 +9,7 @@ import (
 
 // The flags that samples alone can raise.
 const (
+	FlagLostData      = "lost_data"      // the recording stands still before the motion ends
 	FlagOffset        = "offset"         // the mean is not 0
 	FlagBaselineStep  = "baseline_step"  // the level after the motion is not that before it
 	FlagDrift         = "drift"          // the ground does not come to rest
@@ -45,6 +46,11 @@ const (
 	unevenS     = 30.0 // of a record without noise before it, to tell it from noise
 	unevenParts = 8
 	uneven      = 1.5 // the strongest of them over the quietest, of noise
+	stillS      = 0.2 // of equal samples at the end
+	stillCount  = 10  // of them, besides
+	overNoise   = 5.0 // the last second before them over the noise
+	stopShare   = 0.5 // how far of that second's root mean square they are off what precedes
+	stopSteps   = 12  // how many steps of the resolution, besides
 )
 
 // Assess returns what is found in acceleration in m/s², stepS apart in s, whose motion
@@ -55,7 +61,7 @@ func Assess(acceleration []float64, stepS float64, onset int) []Finding {
 		return nil
 	}
 	a := &assessment{x: acceleration, stepS: stepS, onset: onset, peak: signal.Greatest(acceleration)}
-	a.y = settled(a.x, a.stepS)
+	a.still()
 	a.levels()
 	a.rest()
 	a.extent()
@@ -78,7 +84,7 @@ func AssessConditioned(acceleration []float64, stepS float64, onset int) []Findi
 
 type assessment struct {
 	x     []float64
-	y     []float64 // x without drift
+	y     []float64 // x without drift, up to where it was lost
 	stepS float64
 	onset int
 	peak  float64

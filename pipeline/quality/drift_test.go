@@ -32,7 +32,7 @@ func TestDriftIsNoMotion(t *testing.T) {
 			found.count(Assess(y, stepS, signal.Arrival(y, stepS)))
 		}
 		t.Logf("%s: of %d %v", d.name, all, found)
-		for _, flag := range []string{FlagLateStart, FlagEarlyEnd, FlagSeveralEvents, FlagLowSignal} {
+		for _, flag := range []string{FlagLateStart, FlagEarlyEnd, FlagSeveralEvents, FlagLowSignal, FlagLostData} {
 			if found[flag] > 0 {
 				t.Errorf("%s: %s in %d of %d", d.name, flag, found[flag], all)
 			}

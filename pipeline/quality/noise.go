@@ -37,7 +37,7 @@ func (a *assessment) noise() float64 {
 	if a.quietS() < preEventS {
 		return 0
 	}
-	quiet := a.y[:a.onset]
+	quiet := a.y[:min(a.onset, len(a.y))]
 	return max(math.Sqrt(squaresAbout(quiet, signal.Mean(quiet))/float64(len(quiet))), a.rounding())
 }
 
