@@ -53,7 +53,7 @@ func Parse(text []byte) (Recipe, error) {
 	if err := r.Validate(); err != nil {
 		line := 0
 		if step, ok := errors.AsType[*StepError](err); ok {
-			line = lineOf(text, step.Step, "[[step]]")
+			line = lineOfField(text, step)
 		}
 		return Recipe{}, &FileError{line, err}
 	}
@@ -147,6 +147,30 @@ func checkBrackets(text []byte) error {
 		return nil
 	}
 	return &FileError{lineOf(text, 1, "[step]", "step="), errors.New("step: want " + wantedSteps)}
+}
+
+// lineOfField is the line of the field that a step's mistake begins with, or that of the
+// step where the field is not there.
+func lineOfField(text []byte, err *StepError) int {
+	heading := lineOf(text, err.Step, "[[step]]")
+	if heading == 0 {
+		return 0
+	}
+	lines := bytes.Split(text, []byte("\n"))
+	rest := bytes.Join(lines[heading:], []byte("\n"))
+	if next := lineOf(rest, 1, "[[step]]"); next > 0 {
+		rest = bytes.Join(lines[heading:heading+next-1], []byte("\n"))
+	}
+	field, _, _ := strings.Cut(err.Err.Error(), ":")
+	table, key, inTable := strings.Cut(field, ".")
+	beginnings := []string{table + "="}
+	if inTable {
+		beginnings = append(beginnings, key+"=", field+"=")
+	}
+	if line := lineOf(rest, 1, beginnings...); line > 0 {
+		return heading + line
+	}
+	return heading
 }
 
 // lineOf is the n-th line that begins in one of these ways, blanks left out; 0 for none.
