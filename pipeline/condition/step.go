@@ -19,7 +19,7 @@ const (
 	KindMean       Kind = "mean"              // takes off the mean of Window, or of FromS to ToS
 	KindTrend      Kind = "trend"             // takes off the polynomial of Degree that fits Window, or FromS to ToS, best
 	KindOffset     Kind = "offset"            // takes off a step of the baseline of at least Share of PGA
-	KindTaper      Kind = "taper"             // cosine bells over Share of the length at either end
+	KindTaper      Kind = "taper"             // cosine bells over Share of the length at either end, outside the motion
 	KindTrim       Kind = "trim"              // keeps what lies from FromS to ToS
 	KindPad        Kind = "pad"               // zeros over BeforeS and AfterS
 	KindHighPass   Kind = "high-pass"         // acausal Butterworth filter
@@ -64,8 +64,9 @@ type Step struct {
 // NoiseRule chooses a corner where the motion begins to stand out of the noise before
 // it: the ratio of their smoothed Fourier amplitudes, each for its length, is at least
 // Ratio from the corner to the frequency where the motion is strongest. The corner stays
-// within LeastHz and MostHz. It is ElseHz where there is too little before the onset to
-// compare with; 0 stands for no filter.
+// within LeastHz and MostHz, and a low one is none below the lowest frequency of which
+// noise and motion hold a cycle. It is ElseHz where there is too little before the onset
+// to compare with; 0 stands for no filter.
 type NoiseRule struct {
 	Ratio   float64 `json:"ratio" toml:"ratio"`
 	LeastHz float64 `json:"least_hz" toml:"least_hz"`
@@ -198,6 +199,9 @@ func (s Step) validateBand() error {
 	)
 	if err == nil && !(s.HighHz > s.LowHz) {
 		err = fmt.Errorf("high_hz: %g Hz is not above low_hz", s.HighHz)
+	}
+	if least := s.LowHz / (longShare * shortShare); err == nil && !(s.HighHz > least) {
+		err = fmt.Errorf("high_hz: %g Hz leaves no usable period, which it does above %g Hz", s.HighHz, least)
 	}
 	return err
 }
