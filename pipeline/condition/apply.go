@@ -32,8 +32,8 @@ type Conditioned struct {
 	LowCutHz, HighCutHz float64
 	// Oversampled is by how much the step is finer than the component's.
 	Oversampled int
-	// LongS is the longest period in s that the recipe's own high-pass filter leaves, +Inf
-	// where it has none.
+	// LongS is the longest period in s that the recipe's own high-pass filter leaves and
+	// the length of what was recorded can tell, +Inf where nothing was done.
 	LongS float64
 	// Exceeded are the limits of the recipe's checks that the motion exceeds.
 	Exceeded []Excess
@@ -56,7 +56,8 @@ func (r Recipe) Apply(c Component) (Conditioned, error) {
 	if !r.AppliesTo(c.State) || len(r.Steps) == 0 {
 		return out, nil
 	}
-	w := &work{Conditioned: out}
+	w := &work{Conditioned: out, headerLowHz: c.LowCutHz, resolution: signal.Resolution(c.Acceleration)}
+	w.asks = slices.ContainsFunc(r.Steps, func(s Step) bool { return s.ByNoise != nil })
 	w.IsChanged = true
 	w.Acceleration = slices.Clone(c.Acceleration)
 	for i, s := range r.Steps {
@@ -83,8 +84,17 @@ type work struct {
 	noise    ratios
 	hasNoise bool
 	asked    bool
+	// asks says that a step of the recipe will.
+	asks bool
 	// highPassed says that a high-pass filter was applied here.
 	highPassed bool
+	// headerLowHz is the corner that the header states, NaN where it does not.
+	headerLowHz float64
+	// resolution is that of the component as delivered in m/s².
+	resolution float64
+	// tapered is the number of recorded samples at the beginning that a taper has made
+	// small.
+	tapered int
 }
 
 // cornerOf is the fixed corner, or what choose makes of the noise.
@@ -92,14 +102,19 @@ func (w *work) cornerOf(s Step, choose func(ratios, NoiseRule) float64) float64 
 	if s.ByNoise == nil {
 		return s.CornerHz
 	}
-	if !w.asked {
-		w.noise, w.hasNoise = ratiosOf(w.recorded(), w.StepS, w.nyquist())
-		w.asked = true
-	}
+	w.ask()
 	if !w.hasNoise {
 		return s.ByNoise.ElseHz
 	}
 	return choose(w.noise, *s.ByNoise)
+}
+
+// ask looks at the noise unless that of the motion at hand is known.
+func (w *work) ask() {
+	if !w.asked {
+		w.noise, w.hasNoise = w.ratios()
+		w.asked = true
+	}
 }
 
 // recorded is the motion without its pads.
@@ -112,7 +127,7 @@ func (w *work) nyquist() float64 { return 0.5 / (w.StepS * float64(w.Oversampled
 
 func (w *work) do(s Step) error {
 	switch s.Do {
-	case KindHighPass, KindLowPass, KindBandPass, KindPad, KindCheck:
+	case KindHighPass, KindLowPass, KindBandPass, KindPad, KindCheck, KindTaper:
 	default:
 		w.asked = false
 	}
@@ -124,8 +139,10 @@ func (w *work) do(s Step) error {
 	case KindOffset:
 		w.takeOffset(s)
 	case KindTaper:
-		n := int(s.Share * float64(len(w.recorded())))
-		signal.Taper(w.recorded(), n, n)
+		if w.asks {
+			w.ask() // before bells make the noise small
+		}
+		w.taper(s.Share)
 	case KindPad:
 		w.keepBefore, w.keepAfter = max(w.keepBefore, w.samplesOf(s.BeforeS)), max(w.keepAfter, w.samplesOf(s.AfterS))
 		w.pad(w.keepBefore, w.keepAfter)
@@ -151,8 +168,8 @@ func (w *work) takeOff(s Step, degree int) error {
 	from, to := 0, len(x)
 	switch s.Window {
 	case WindowPreEvent:
-		if n := quietSamples(x, w.StepS); n > 0 {
-			to = n
+		if quiet, onset := w.quiet(); onset > 0 {
+			from, to = quiet, onset
 		}
 	case WindowStated:
 		from, to = int(math.Round(s.FromS/w.StepS)), int(math.Round(s.ToS/w.StepS))+1
@@ -182,6 +199,7 @@ func (w *work) trim(fromS, toS float64) error {
 	w.Acceleration = w.Acceleration[w.before+from : w.before+to]
 	w.LeadS -= float64(float64(w.before+from) * w.StepS)
 	w.before, w.after, w.keepBefore, w.keepAfter = 0, 0, 0, 0
+	w.tapered = max(0, w.tapered-from)
 	return nil
 }
 
@@ -194,6 +212,7 @@ func (w *work) oversample(factor int) {
 	w.Acceleration = signal.Resample(w.Acceleration, factor)
 	w.StepS /= float64(factor)
 	w.Oversampled *= factor
+	w.tapered *= factor
 	w.before *= factor
 	w.keepBefore, w.keepAfter = w.keepBefore*factor, w.keepAfter*factor
 	w.after = w.after*factor + factor - 1 // zeros between the last sample and the first pad
@@ -223,15 +242,15 @@ func (w *work) highPass(s Step) error {
 
 // passAbove filters no lower than the header says: what is below is gone.
 func (w *work) passAbove(order int, corner float64) error {
-	if w.LowCutHz > corner {
-		corner = w.LowCutHz
+	if w.headerLowHz > corner {
+		corner = w.headerLowHz
 	}
 	f, err := signal.HighPass(order, corner, w.StepS)
 	if err != nil {
 		return err
 	}
 	w.filter(f)
-	w.LowCutHz, w.highPassed = corner, true
+	w.cutBelow(corner)
 	return nil
 }
 
@@ -241,16 +260,25 @@ func (w *work) bandPass(s Step) error {
 		return w.passAbove(s.Order, s.LowHz)
 	}
 	low := s.LowHz
-	if w.LowCutHz > low {
-		low = w.LowCutHz
+	if w.headerLowHz > low {
+		low = w.headerLowHz
 	}
 	f, err := signal.BandPass(s.Order, low, s.HighHz, w.StepS)
 	if err != nil {
 		return err
 	}
 	w.filter(f)
-	w.LowCutHz, w.HighCutHz, w.highPassed = low, s.HighHz, true
+	w.cutBelow(low)
+	w.HighCutHz = s.HighHz
 	return nil
+}
+
+// cutBelow notes a high-pass filter; of several the highest corner counts.
+func (w *work) cutBelow(corner float64) {
+	if !(w.LowCutHz > corner) {
+		w.LowCutHz = corner
+	}
+	w.highPassed = true
 }
 
 // lowPass leaves a motion alone that has nothing above the corner.

@@ -15,12 +15,15 @@ var unknown = math.NaN()
 // motion is invented: noise that rises and dies away after quietS, between two corners,
 // with a peak of 2 m/s².
 func motion(seed uint64, stepS, quietS, lowHz, highHz float64) []float64 {
+	return shape(seed, stepS, quietS, lowHz, highHz, func(t float64) float64 { return t * t / (1 + t*t) * math.Exp(-t/6) })
+}
+
+func shape(seed uint64, stepS, quietS, lowHz, highHz float64, envelope func(s float64) float64) []float64 {
 	random := rand.New(rand.NewPCG(seed, 1))
 	n, quiet, pad := int(80/stepS), int(quietS/stepS), int(100/stepS)
 	x := make([]float64, n+2*pad)
 	for i := quiet; i < n; i++ {
-		t := float64(i-quiet) * stepS
-		x[pad+i] = random.NormFloat64() * t * t / (1 + t*t) * math.Exp(-t/6)
+		x[pad+i] = random.NormFloat64() * envelope(float64(i-quiet)*stepS)
 	}
 	for _, design := range []func() (signal.Filter, error){
 		func() (signal.Filter, error) { return signal.HighPass(4, lowHz, stepS) },

@@ -7,27 +7,12 @@ import (
 )
 
 const (
-	// guardS is the time before the onset in s that counts neither as noise nor as
-	// motion: pickers are late.
-	guardS = 0.5
-	// leastNoiseS is the shortest noise in s that is taken for such.
-	leastNoiseS = 2.0
 	// smoothing is the half width of the band over which power is averaged: a sixth of
 	// an octave to either side.
 	smoothing = 1.122462048309373
 	// cornersADecade is how finely corners are looked for.
 	cornersADecade = 20
 )
-
-// quietSamples is the number of samples before the onset, less the guard, 0 where they
-// are too few.
-func quietSamples(x []float64, stepS float64) int {
-	n := signal.Arrival(x, stepS) - int(math.Ceil(guardS/stepS))
-	if float64(n)*stepS < leastNoiseS {
-		return 0
-	}
-	return n
-}
 
 // ratios are the amplitudes of motion over noise, each for its length, at frequencies
 // that rise by equal factors up to half the sampling rate as delivered.
@@ -36,24 +21,31 @@ type ratios struct {
 	strongest          int // where the smoothed motion has its greatest amplitude
 }
 
-// ratiosOf begins at leastCornerHz, or at the lowest frequency of which the noise holds a
-// cycle, where that is higher, and ends at nyquist in Hz, above which x has nothing. ok is
-// false without noise to compare with.
-func ratiosOf(x []float64, stepS, nyquist float64) (r ratios, ok bool) {
-	quiet := quietSamples(x, stepS)
-	if quiet == 0 {
+// ratios begin at leastCornerHz, or at the lowest frequency of which both the noise and the
+// motion hold a cycle, where that is higher, and end at half the sampling rate as
+// delivered, above which there is nothing. The noise is that of rounding at least. The
+// motion is followed by its length again, so that an end cut off does not look like
+// long periods. ok is false without noise to compare with.
+func (w *work) ratios() (r ratios, ok bool) {
+	quiet, from := w.quiet()
+	if from == 0 {
 		return r, false
 	}
-	fromHz := min(max(leastCornerHz, 1/(float64(quiet)*stepS)), nyquist/2)
+	x, nyquist := w.recorded(), w.nyquist()
+	end := w.endOf(quiet, from)
+	to := min(len(x), max(2*end-from, from+w.samplesOf(leastNoiseS)))
+	shortestS := float64(min(from-quiet, to-from)) * w.StepS
+	fromHz := min(max(leastCornerHz, 1/shortestS), nyquist/2)
 	steps := int(math.Ceil(cornersADecade * math.Log10(nyquist/fromHz)))
 	for k := range steps + 1 {
 		r.frequencyHz = append(r.frequencyHz, fromHz*math.Pow(nyquist/fromHz, float64(k)/float64(steps)))
 	}
-	noise := signal.PowerOf(x[:quiet], stepS).Smooth(r.frequencyHz, smoothing)
-	motion := signal.PowerOf(x[quiet:], stepS).Smooth(r.frequencyHz, smoothing)
+	noise := signal.PowerOf(x[quiet:from], w.StepS).Smooth(r.frequencyHz, smoothing)
+	motion := signal.PowerOf(x[from:to], w.StepS).Smooth(r.frequencyHz, smoothing)
+	rounding := roundingPower(w.resolution) / nyquist
 	top := 0.0
 	for k := range r.frequencyHz {
-		r.ratio = append(r.ratio, math.Sqrt(motion[k]/noise[k]))
+		r.ratio = append(r.ratio, math.Sqrt(motion[k]/max(noise[k], rounding)))
 		if motion[k] > top {
 			top, r.strongest = motion[k], k
 		}
@@ -61,8 +53,8 @@ func ratiosOf(x []float64, stepS, nyquist float64) (r ratios, ok bool) {
 	return r, true
 }
 
-// lowCorner is the lowest frequency from which on the motion stands out. Where it does
-// so down to the lowest that the noise can tell, the corner is ElseHz if that is lower.
+// lowCorner is the lowest frequency from which on the motion stands out, which is none
+// below the lowest that lengths can tell.
 func (r ratios) lowCorner(n NoiseRule) float64 {
 	if !(r.ratio[r.strongest] >= n.Ratio) {
 		return n.MostHz
@@ -71,11 +63,7 @@ func (r ratios) lowCorner(n NoiseRule) float64 {
 	for k > 0 && r.ratio[k-1] >= n.Ratio {
 		k--
 	}
-	corner := r.frequencyHz[k]
-	if k == 0 && n.ElseHz > 0 {
-		corner = min(corner, n.ElseHz)
-	}
-	return min(max(corner, n.LeastHz), n.MostHz)
+	return min(max(r.frequencyHz[k], n.LeastHz), n.MostHz)
 }
 
 // highCorner is the highest frequency up to which the motion stands out, 0 where that is

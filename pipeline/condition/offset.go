@@ -16,16 +16,13 @@ const (
 	// offsetQuietS and offsetRestS are the least lengths before and behind the motion in s.
 	offsetQuietS = 10.0
 	offsetRestS  = 20.0
-	// restFrom is the share of the squares above 1 Hz behind which the ground is taken to
-	// be at rest but for its coda.
-	restFrom = 0.99
 )
 
 // takeOffset takes off a step of the baseline of at least the step's share of PGA, where
 // there is one.
 func (w *work) takeOffset(s Step) {
 	x := w.recorded()
-	quiet := quietSamples(x, w.StepS)
+	_, quiet := w.quiet()
 	if float64(quiet)*w.StepS < offsetQuietS {
 		return
 	}

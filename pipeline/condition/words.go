@@ -15,7 +15,7 @@ func (s Step) Words() string {
 	case KindOffset:
 		return fmt.Sprintf("takes off a step of the baseline of %g %% of PGA or more", 100*s.Share)
 	case KindTaper:
-		return fmt.Sprintf("cosine bells over %g %% of the length at either end", 100*s.Share)
+		return fmt.Sprintf("cosine bells over %g %% of the length at either end, at most 5 s, outside the motion", 100*s.Share)
 	case KindTrim:
 		if s.ToS == 0 {
 			return fmt.Sprintf("keeps what follows %g s", s.FromS)

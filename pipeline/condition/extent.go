@@ -1,0 +1,91 @@
+package condition
+
+import (
+	"math"
+
+	"swaybook/pipeline/signal"
+)
+
+const (
+	// guardS is the time before the onset in s that counts neither as noise nor as
+	// motion: pickers are late.
+	guardS = 0.5
+	// leastNoiseS is the shortest noise in s that is taken for such.
+	leastNoiseS = 2.0
+	// endFactor is how many times the power of the noise the motion has up to its end:
+	// twice the amplitude (common practice).
+	endFactor = 4
+	// restFrom is the share of the squares above 1 Hz behind which the ground is taken to
+	// be at rest but for its coda.
+	restFrom = 0.99
+)
+
+// quietSamples is the number of samples before the onset, less the guard, 0 where they
+// are too few.
+func quietSamples(x []float64, stepS float64) int {
+	n := onsetOf(x, stepS)
+	if float64(n)*stepS < leastNoiseS {
+		return 0
+	}
+	return n
+}
+
+// onsetOf is the sample before which nothing is motion.
+func onsetOf(x []float64, stepS float64) int {
+	return max(0, signal.Arrival(x, stepS)-int(math.Ceil(guardS/stepS)))
+}
+
+// quiet are the recorded samples from which the noise is told: what a taper has made
+// small is left out. They are none where they are too few.
+func (w *work) quiet() (from, to int) {
+	if w.tapered >= len(w.recorded()) {
+		return 0, 0
+	}
+	n := quietSamples(w.recorded()[w.tapered:], w.StepS)
+	if n == 0 {
+		return 0, 0
+	}
+	return w.tapered, w.tapered + n
+}
+
+// roundingPower is the mean square of what rounding to the resolution adds.
+//
+// Source: W. R. Bennett, Spectra of Quantized Signals, Bell System Tech. J. 27, 1948, for
+// an error that is even over a step (from memory).
+func roundingPower(resolution float64) float64 { return resolution * resolution / 12 }
+
+// endOf is the recorded sample at which a motion is lost in the noise, or in rounding; the
+// samples from quiet to from are noise.
+func (w *work) endOf(quiet, from int) int {
+	return signal.EndAbove(w.recorded(), w.StepS, quiet, from, roundingPower(w.resolution), endFactor)
+}
+
+const (
+	// mostBellS bounds the bells of a taper in s: drift and noise of longer periods are
+	// what filters take off, not a taper (common practice).
+	mostBellS = 5.0
+	// leastBellS is the bell in s of a motion that begins or ends at once (common
+	// practice).
+	leastBellS = 0.1
+)
+
+// taper keeps its bells out of the motion.
+func (w *work) taper(share float64) {
+	x := w.recorded()
+	if len(x) == 0 {
+		return
+	}
+	onset := onsetOf(x, w.StepS)
+	first := w.bell(share, onset)
+	end := min(w.endOf(0, onset), signal.EndOf(x, w.StepS, restFrom))
+	signal.Taper(x, first, w.bell(share, len(x)-end))
+	w.tapered = max(w.tapered, first)
+}
+
+// bell is the length of a bell where so many samples are no motion: half of them, within
+// the limits.
+func (w *work) bell(share float64, quiet int) int {
+	n := len(w.recorded())
+	most := min(int(share*float64(n)), int(mostBellS/w.StepS))
+	return min(most, max(quiet/2, int(leastBellS/w.StepS)))
+}
