@@ -65,10 +65,11 @@ func (r Recipe) Apply(c Component) (Conditioned, error) {
 			return out, &StepError{Step: i + 1, Kind: s.Do, Err: err}
 		}
 	}
-	w.cutPads()
+	w.LongS = lengthShare * float64(len(w.recorded())) * w.StepS
 	if w.highPassed {
-		w.LongS = cmp.Or(r.LongShare, longShare) / w.LowCutHz
+		w.LongS = min(w.LongS, cmp.Or(r.LongShare, longShare)/w.LowCutHz)
 	}
+	w.cutPads()
 	return w.Conditioned, nil
 }
 

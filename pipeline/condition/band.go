@@ -6,6 +6,8 @@ import "math"
 const (
 	longShare  = 0.8
 	shortShare = 0.8
+	// lengthShare of what was recorded is the longest period that it can tell.
+	lengthShare = 0.2
 )
 
 // DoubtfulSteps are the steps a period below which ordinates may be low, since the ground
