@@ -46,19 +46,4 @@ func (a *assessment) noise() float64 {
 //
 // Source: W. R. Bennett, Spectra of Quantized Signals, Bell System Technical Journal 27(3),
 // 1948 (from memory).
-func (a *assessment) rounding() float64 { return resolution(a.x) / math.Sqrt(12) }
-
-// resolution is the smallest step between neighbouring samples that is not zero, 0 where
-// there is none.
-func resolution(x []float64) float64 {
-	step := math.Inf(1)
-	for i := 1; i < len(x); i++ {
-		if d := math.Abs(x[i] - x[i-1]); d > 0 && d < step {
-			step = d
-		}
-	}
-	if math.IsInf(step, 1) {
-		return 0
-	}
-	return step
-}
+func (a *assessment) rounding() float64 { return signal.Resolution(a.x) / math.Sqrt(12) }

@@ -43,5 +43,5 @@ func (a *assessment) goesOn(n int) (share float64, ok bool) {
 	for _, v := range a.x[end-n : end] {
 		off = max(off, math.Abs(v-a.x[end]))
 	}
-	return share, off > max(stopShare*last, stopSteps*resolution(a.x))
+	return share, off > max(stopShare*last, stopSteps*signal.Resolution(a.x))
 }
