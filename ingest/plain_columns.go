@@ -24,6 +24,7 @@ type plainColumn struct {
 	orientation Orientation
 	unit        statement // of a value column
 	scale       float64   // s per unit of a time column whose name states it, else 0
+	byComment   bool      // named by a comment, perhaps by chance
 }
 
 // columns gives the columns their meaning by the names over them. Unnamed, one
@@ -107,6 +108,9 @@ func checkDirections(columns []plainColumn, line int) error {
 // does not rise throughout.
 func settlePair(columns []plainColumn, rows *plainRows) error {
 	a, b := &columns[0], &columns[1]
+	if isChance(*a) && isChance(*b) && isMostlyEven(rows.values[0]) && !isRising(rows.values[1]) {
+		*a, *b = plainColumn{kind: columnTime}, plainColumn{kind: columnValue}
+	}
 	switch {
 	case a.kind != columnUnknown && b.kind != columnUnknown:
 		return nil
@@ -129,6 +133,11 @@ func settlePair(columns []plainColumn, rows *plainRows) error {
 		return refuse(rows.line[0], "columns", "both columns rise throughout, either may be the time; name the columns")
 	}
 	return refuse(rows.line[0], "columns", "two columns, and the first does not rise like a time: a wrapped series needs a count (# npts = N) or a layout, with --layout; columns need names")
+}
+
+// isChance reports whether a comment has a word in it that could name a direction.
+func isChance(c plainColumn) bool {
+	return c.byComment && c.kind == columnValue && c.unit.text == ""
 }
 
 func isRising(xs []float64) bool {

@@ -23,8 +23,12 @@ func (h *plainHead) named(form numberForm) ([]plainColumn, error) {
 // namedBy reads one of the lines as names.
 func (h *plainHead) namedBy(at int, form numberForm) ([]plainColumn, error) {
 	columns, sure, err := h.readNames(at, form)
-	if columns == nil || err != nil {
+	if columns == nil || err != nil || h.lines[at].isStatement(columns) {
 		return nil, err
+	}
+	for i := range columns {
+		columns[i].byComment = !sure
+		columns[i].dropProse(len(columns) == 1)
 	}
 	isSpectral := func(c plainColumn) bool { return c.kind == columnSpectral }
 	unknown := slices.IndexFunc(columns, func(c plainColumn) bool { return c.kind == columnUnknown })
@@ -42,6 +46,40 @@ func (h *plainHead) namedBy(at int, form numberForm) ([]plainColumn, error) {
 	}
 	return nil, refuse(columns[unknown].line, "columns", "column %d is %s; known are time, acc, velocity, displacement and directions (NS EW UD, N E Z, H1 H2 V, azimuths)%s",
 		unknown+1, found(columns[unknown].name), title)
+}
+
+// isStatement reports whether a line of comment, or one over a single column, holds
+// a key or a number of its own, as no row of names does.
+func (l heading) isStatement(columns []plainColumn) bool {
+	if l.sure && len(columns) > 1 {
+		return false
+	}
+	return strings.ContainsAny(l.text, ":=") || slices.ContainsFunc(columns, func(c plainColumn) bool {
+		base, _ := splitUnit(c.name)
+		return slices.ContainsFunc(strings.Fields(base), func(word string) bool {
+			return isDigit(word[0]) && len(word) < 3 || strings.Trim(word, "0123456789.,") == ""
+		})
+	})
+}
+
+// dropProse makes a column unknown whose name only begins like a quantity or a
+// direction: in a comment, and over a single column, every word must be understood,
+// and a comment over a single column must be a quantity with its unit.
+func (c *plainColumn) dropProse(single bool) {
+	if !single && !c.byComment {
+		return
+	}
+	base, unit := splitUnit(c.name)
+	if at := strings.LastIndexByte(base, ','); unit == "" && at > 0 {
+		base, unit = base[:at], strings.TrimSpace(base[at+1:])
+	}
+	isOther := c.kind == columnIgnored || c.kind == columnSpectral
+	switch {
+	case isOther && !isOtherName(commentKey(base)):
+		c.kind = columnUnknown
+	case single && c.byComment && !(c.kind == columnValue && c.unit.text != "" || isOther && (isUnitWord(unit) || isSeriesName(commentKey(base)))):
+		c.kind, c.orientation = columnUnknown, Orientation{}
+	}
 }
 
 // isProse reports whether a line, of whose words some are no names of columns, is
@@ -93,6 +131,9 @@ func (h *plainHead) readNames(at int, form numberForm) (columns []plainColumn, s
 	names := row.split(form)
 	units := make([]string, len(names))
 	if areUnits(names) {
+		if !sure && form.fields == 1 {
+			return nil, false, nil // a word of a comment
+		}
 		units = names
 		names = make([]string, len(units))
 		for i, unit := range units {

@@ -48,6 +48,34 @@ var (
 	ordinateNames     = []string{"sa", "psa", "sv", "psv", "sd", "psd", "fas", "rs", "spectral", "spectrum", "spectra", "fourier", "pseudo"}
 )
 
+// The words that names of other quantities are made of: those that say which, and
+// those that may stand beside them.
+var (
+	seriesNames = []string{"velocity", "velocities", "displacement", "displacements", "spectrum", "spectra", "spectral"}
+	otherWords  = slices.Concat(seriesNames, ordinateNames, spectralNames, indexNames, []string{"vel", "veloc", "disp", "displ"})
+	besideWords = []string{"acceleration", "accel", "acc", "response", "amplitude", "amplitudes", "ground", "relative", "absolute", "total",
+		"time", "history", "series", "component", "horizontal", "vertical", "ns", "ew", "ud", "n", "e", "z", "h1", "h2", "x", "y", "up", "s", "sec", "hz", "cm", "m", "g"}
+)
+
+// isOtherName reports whether a name is that of another quantity than acceleration,
+// from its first word to its last.
+func isOtherName(word string) bool {
+	other := false
+	for _, part := range strings.Split(strings.Trim(word, "_"), "_") {
+		if slices.Contains(otherWords, part) {
+			other = true
+		} else if !slices.Contains(besideWords, part) {
+			return false
+		}
+	}
+	return other
+}
+
+// isSeriesName reports whether such a name says in whole words what the numbers are.
+func isSeriesName(word string) bool {
+	return isOtherName(word) && slices.ContainsFunc(strings.Split(word, "_"), func(part string) bool { return slices.Contains(seriesNames, part) })
+}
+
 // spectraReason is why a table of spectra is skipped.
 const spectraReason = "spectra, not a time series"
 
