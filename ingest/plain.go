@@ -137,6 +137,9 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 	}
 	if len(out) == 1 {
 		h.setPeak(&out[0])
+		if err := h.direct(&out[0]); err != nil {
+			return nil, err
+		}
 	}
 	return out, nil
 }

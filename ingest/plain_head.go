@@ -20,6 +20,7 @@ type plainHead struct {
 type comment struct {
 	key, value string
 	line       int
+	sure       bool // on a line that is no comment
 }
 
 // firstNumbers returns the first line of numbers, the first that looks like it
@@ -65,7 +66,10 @@ func readPlainHead(t *Text) (*plainHead, error) {
 			l.text = strings.TrimSpace(strings.TrimLeft(l.text, "#%!;*/\""))
 		}
 		h.lines = append(h.lines, l)
-		h.comments = append(h.comments, l.statements()...)
+		for _, c := range l.statements() {
+			c.sure = l.sure
+			h.comments = append(h.comments, c)
+		}
 	}
 	if n := len(h.lines); n > 0 && h.lines[n-1].sure && h.lines[n-1].text != "" {
 		last := h.lines[n-1]
@@ -98,7 +102,7 @@ func splitComment(text string, line int) []comment {
 		if unit != "" {
 			value += " " + unit
 		}
-		out = append(out, comment{commentKey(key), value, line})
+		out = append(out, comment{key: commentKey(key), value: value, line: line})
 	}
 	return out
 }
@@ -207,13 +211,6 @@ func (h *plainHead) describe(c *Channel) error {
 		case "processing":
 			state, err := parseProcessing(s.value)
 			c.Processing, ok = state, err == nil
-		case "component", "direction", "azimuth", "azimuth_deg":
-			if c.Orientation.Axis != AxisUnknown {
-				continue // the column's name says it
-			}
-			if c.Orientation, ok = direction(s.value); !ok {
-				return refuse(s.line, s.key, "unknown direction %s", found(s.value))
-			}
 		default:
 			ok = describeNumber(c, s)
 		}

@@ -65,3 +65,44 @@ func TestPlainHeadsOfProse(t *testing.T) {
 	checkHeads(t, cases, timed(even(20, 0.01), "%.2f", " "), Hints{Unit: "gal"})
 	checkHeads(t, []headCase{{"# RS station, NS", read}, {"# N,E", read}, {"# Frequency 100, gal", read}}, timed(even(20, 0.01), "%.2f", ","), Hints{Unit: "gal"})
 }
+
+// A digit counts channels, and is no direction.
+func TestPlainHeadsOfCounters(t *testing.T) {
+	hints := Hints{Unit: "gal", StepS: 0.02}
+	checkHeads(t, []headCase{
+		{"Time (s),1,2,3", `case:2: columns: column "2": several columns of accelerations need different directions as names`},
+	}, fourColumns(0.02), hints)
+	checkHeads(t, []headCase{{"Time (s),1", "gal 0.02;"}, {"Time (s),3 (gal)", "gal 0.02;"}}, timed(even(20, 0.02), "%.2f", ","), Hints{Unit: "gal", UnitForAll: true, StepS: 0.02})
+	checkHeads(t, []headCase{
+		{"# component: 1", `gal 0.02;line 1: component "1" is no direction`}, {"# component: 3", `gal 0.02;line 1: component "3" is no direction`}, {"Component: 2", `gal 0.02;line 1: component "2" is no direction`},
+		{"# component: H2", "gal 0.02 h #2;"}, {"# component: 010", "gal 0.02 h 10;"}, {"# component: 0", "gal 0.02 h 0;"},
+	}, column(20, "%.4f"), hints)
+}
+
+// Names and the units below them do not contradict each other.
+func TestPlainHeadsOfTwoUnits(t *testing.T) {
+	checkHeads(t, []headCase{
+		{"Time (s),Acc (g)\ns,cm/s2", `case:2: columns: unit "cm/s2" here, column "Acc (g)" in line 1`},
+		{"Time,acc_gal\ns,g", `case:2: columns: unit "g" here, column "acc_gal" in line 1`},
+		{"time_ms,Acc (gal)\ns,gal", `case:2: columns: unit "s" here, column "time_ms" in line 1`},
+		{"Time (s),Acc (gal)\nsec,cm/s2", "gal 0.02;"},
+	}, timed(even(20, 0.02), "%.2f", ","), Hints{})
+}
+
+// Directions are stated by keys that speak of the component. An azimuth may be that
+// of the epicentre.
+func TestPlainHeadsOfDirections(t *testing.T) {
+	hints := Hints{Unit: "gal", StepS: 0.02}
+	checkHeads(t, []headCase{
+		{"Azimuth: 214", "gal 0.02;line 1: azimuth \"214\" may be another than the component's, not used: state it as component"},
+		{"# azimuth: 214", "gal 0.02 h 214;"}, {"# azimuth: 90.0", "gal 0.02 h 90;"}, {"# azimuth: N45E", "gal 0.02 h 45;"},
+		{"# epicentral distance: 34 km\n# azimuth: 214", "gal 0.02;line 2: azimuth \"214\" may be another than the component's, not used: state it as component"},
+		{"Sensor azimuth: 214", "gal 0.02 h 214;"}, {"# component azimuth: 214", "gal 0.02 h 214;"}, {"# orientation: EW", "gal 0.02 h 90;"},
+		{"# component: 090°", "gal 0.02 h 90;"}, {"# component: 90 deg", "gal 0.02 h 90;"}, {"Component: HNE", "gal 0.02 h 90;"}, {"# component: HNZ", "gal 0.02 v;"},
+		{"Component: radial", `gal 0.02;line 1: component "radial" not understood`},
+		{"# component: N\n# direction: E", `case:2: direction: "E" here, "N" in line 1`},
+		{"# component: N\n# direction: NS", "gal 0.02 h 0;"},
+		{"NS (gal)\n# component: EW", `case:2: component: "EW" here, column NS over the numbers`},
+		{"NS (gal)\n# component: north", "gal 0.02 h 0;"},
+	}, column(20, "%.4f"), hints)
+}

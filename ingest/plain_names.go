@@ -146,10 +146,15 @@ func (h *plainHead) readNames(at int, form numberForm) (columns []plainColumn, s
 		}
 	}
 	for i, name := range names {
-		if base, unit := splitUnit(name); unit == "" && bare(units[i]) != "" {
-			name = base + " (" + bare(units[i]) + ")"
-		}
 		c, err := nameColumn(name, row.line)
+		if unit := bare(units[i]); unit != "" && err == nil && unitLine != row.line {
+			if err := c.contradicts(unit, unitLine, row.line); err != nil {
+				return nil, false, err
+			}
+		}
+		if base, unit := splitUnit(name); unit == "" && bare(units[i]) != "" {
+			c, err = nameColumn(base+" ("+bare(units[i])+")", row.line)
+		}
 		if err != nil {
 			if !sure {
 				return nil, false, nil // a comment may speak of anything
@@ -164,6 +169,16 @@ func (h *plainHead) readNames(at int, form numberForm) (columns []plainColumn, s
 	}
 	columns, err = settleLetters(columns)
 	return columns, sure, err
+}
+
+// contradicts refuses a unit below a name that says another one.
+func (c plainColumn) contradicts(unit string, line, named int) error {
+	below, err := nameColumn("time ("+unit+")", line)
+	isTime := c.kind == columnTime && c.scale != 0 && err == nil && below.scale != 0
+	if isTime && c.scale != below.scale || c.kind == columnValue && c.unit.text != "" && !sameStatement(c.unit.text, unit) {
+		return refuse(line, "columns", "unit %s here, column %s in line %d", found(unit), found(c.name), named)
+	}
+	return nil
 }
 
 // isKnownName reports whether a name alone says what a column holds.

@@ -18,11 +18,11 @@ func (l heading) statements() []comment {
 	}
 	if base, unit := splitUnit(l.text); slices.Contains(accelerationNames, commentKey(base)) {
 		if _, err := ParseUnit(unit); err == nil {
-			out = append(out, comment{"unit", unit, l.line})
+			out = append(out, comment{key: "unit", value: unit, line: l.line})
 		}
 	}
 	if m := rateInWords.FindStringSubmatch(l.text); m != nil {
-		out = append(out, comment{"rate", m[1], l.line})
+		out = append(out, comment{key: "rate", value: m[1], line: l.line})
 	}
 	return out
 }

@@ -352,6 +352,7 @@ func FuzzPlain(f *testing.F) {
 		f.Add([]byte(strings.Join(x.lines, x.ending)))
 	}
 	f.Add([]byte("# dt=0.01, unit=g\n1 0.1\n2 \u22120.2\n"))
+	f.Add([]byte("# component: 3G\n# dt = 0.01\n# unit: g\n0"))
 	f.Add([]byte("NS;EW\n1,5;2\n\n3;4\n"))
 	f.Fuzz(func(t *testing.T, data []byte) { fuzzFormat(t, plain{}, data) })
 }

@@ -30,6 +30,8 @@ func nameColumn(name string, line int) (plainColumn, error) {
 	}
 	if slices.Contains(accelerationNames, word) {
 		c.kind = columnValue
+	} else if isCounter(word) {
+		c.kind = columnValue // of unknown direction
 	} else if o, ok := columnDirection(base, word); ok {
 		c.kind, c.orientation = columnValue, o
 	}
@@ -95,6 +97,10 @@ func (c plainColumn) asTime(word, unit string, line int) (plainColumn, error) {
 	}
 	return c, nil
 }
+
+// isCounter reports whether a name is one digit over zero, which counts channels and says
+// nothing of their direction.
+func isCounter(name string) bool { return len(name) == 1 && name[0] >= '1' && name[0] <= '9' }
 
 // columnDirection reads the direction that a column is named by, perhaps after a
 // word for acceleration.
