@@ -65,6 +65,9 @@ func readPlainHead(t *Text) (*plainHead, error) {
 		if !l.sure {
 			l.text = strings.TrimSpace(strings.TrimLeft(l.text, "#%!;*/\""))
 		}
+		if l.text != "" && strings.Trim(l.text, "-=_+|*, ;\t") == "" {
+			continue // a rule under the names
+		}
 		h.lines = append(h.lines, l)
 		for _, c := range l.statements() {
 			c.sure = l.sure
@@ -83,7 +86,7 @@ func readPlainHead(t *Text) (*plainHead, error) {
 // splitComment returns the keys and values of a comment: "dt = 0.01",
 // "unit: cm/s2", or several "key=value" between commas or semicolons.
 func splitComment(text string, line int) []comment {
-	text = strings.TrimRight(text, "\" ")
+	text = strings.TrimRight(text, "\" ,;\t")
 	parts := strings.FieldsFunc(text, func(r rune) bool { return r == ',' || r == ';' })
 	if slices.ContainsFunc(parts, func(p string) bool { return !strings.Contains(p, "=") }) {
 		parts = []string{text}

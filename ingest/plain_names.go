@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"regexp"
 	"slices"
 	"strings"
 )
@@ -96,6 +97,8 @@ func isProse(columns []plainColumn, sure, blanks bool) bool {
 	}
 	first := columns[0]
 	switch {
+	case sure && isTitle(columns):
+		return true
 	case len(columns) > 2:
 		return !sure || !known
 	case !sure:
@@ -105,6 +108,22 @@ func isProse(columns []plainColumn, sure, blanks bool) bool {
 		return strings.ContainsAny(first.name, " \t") && !isUnitWord(unit)
 	}
 	return false
+}
+
+// otherMeasures are words, or their beginnings, that name a time or another quantity
+// than acceleration in some language, so that they are no title.
+var otherMeasures = regexp.MustCompile(`(?i)^(?:vel|vit|gesch|disp|d[eé]pl|desp|spost|versch|intens|temp|tiem|zeit|zaman|time|arias|husid|energ|jerk|tilt|rotat|strain|press|volt|count|perio|freq|magn|dist|depth|sa|psa|sv|psv|sd|psd|rs|fas)$|^(?:velo|vites|geschw|displ|d[eé]plac|despl|spost|versch|intens|temper|temps|tempo|tiempo|zeit|pressu|strain|volt|counts|period|spect|espec|spekt)`)
+
+// isTitle reports whether one or two words that begin no known name are a title: no
+// unit stands with them, and none names another quantity.
+func isTitle(columns []plainColumn) bool {
+	for _, c := range columns {
+		_, unit := splitUnit(c.name)
+		if unit != "" || otherMeasures.MatchString(c.name) {
+			return false
+		}
+	}
+	return len(columns) <= 2 && columns[0].kind == columnUnknown
 }
 
 // ambiguousLetter refuses a v or u beside a time alone.
@@ -167,9 +186,47 @@ func (h *plainHead) readNames(at int, form numberForm) (columns []plainColumn, s
 		c.line = row.line
 		columns = append(columns, c)
 	}
+	settleUnits(columns)
 	columns, err = settleLetters(columns)
 	return columns, sure, err
 }
+
+// settleUnits gives two columns their meaning by their units, one of time and one of
+// acceleration, whatever their names; but not those that speak of periods or spectra.
+func settleUnits(columns []plainColumn) {
+	if len(columns) != 2 {
+		return
+	}
+	times, values := -1, -1
+	for i, c := range columns {
+		_, unit := splitUnit(c.name)
+		if name, after, ok := strings.Cut(c.name, "/"); ok && !strings.ContainsAny(name, "([") {
+			unit = strings.Trim(after, " ()") // Time/s, a / (m/s^2)
+		}
+		if _, err := ParseUnit(unit); err == nil && (c.kind == columnUnknown || c.kind == columnValue) {
+			values = i
+			columns[i].unit = statement{unit, c.line}
+		} else if isTimeUnit(unit) && (c.kind == columnUnknown || c.kind == columnTime) {
+			times = i
+		}
+		if spectralStem.MatchString(c.name) {
+			return
+		}
+	}
+	if times < 0 || values < 0 {
+		return
+	}
+	columns[values].kind = columnValue
+	if c := &columns[times]; c.kind == columnUnknown {
+		c.kind, c.scale = columnTime, 1
+		if strings.HasSuffix(strings.ToLower(strings.Trim(c.name, " )]")), "ms") {
+			c.scale = 1e-3
+		}
+	}
+}
+
+// spectralStem is in the words for period, frequency and spectrum of many languages.
+var spectralStem = regexp.MustCompile(`(?i)perio|freq|frec|frek|spe[ck]t|spett|espec|周期|周波|スペクトル|応答`)
 
 // contradicts refuses a unit below a name that says another one.
 func (c plainColumn) contradicts(unit string, line, named int) error {
@@ -236,11 +293,17 @@ func (l heading) split(form numberForm) []string {
 	}
 	for _, names := range splitNames(l.text, form) {
 		if len(names) == form.fields {
+			for i := range names {
+				names[i] = strings.Trim(names[i], " \t\"'")
+			}
 			return names
 		}
 	}
 	return nil
 }
+
+// bracketed is a unit in brackets, as rows of units are written.
+var bracketed = regexp.MustCompile(`^(?:\([^()]*\)|\[[^\[\]]*\])$`)
 
 // splitNames splits a header row in the ways it may be written: with the
 // delimiter of the numbers, else with another one, else as one name.
@@ -262,6 +325,9 @@ func splitNames(text string, form numberForm) [][]string {
 			continue
 		}
 		words = append(words, w)
+	}
+	if fields := strings.Fields(text); !slices.ContainsFunc(fields, func(f string) bool { return !bracketed.MatchString(f) }) {
+		ways = append(ways, fields)
 	}
 	ways = append(ways, words)
 	if form.fields == 1 {
