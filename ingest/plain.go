@@ -178,10 +178,12 @@ func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 	case comment.text != "" || hints.Unit == "":
 		return chooseUnit(comment, hints)
 	default:
-		if err := h.checkUnit(hints); err != nil {
+		warning, err := h.checkUnit(hints)
+		if err != nil {
 			return Unit{}, "", err
 		}
-		return chooseUnit(comment, hints)
+		unit, _, err := chooseUnit(comment, hints)
+		return unit, warning, err
 	}
 	if comment.text != "" {
 		a, errA := ParseUnit(col.unit.text)

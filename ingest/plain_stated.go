@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"fmt"
 	"math"
 	"regexp"
 	"slices"
@@ -61,24 +62,58 @@ var (
 	}
 )
 
-// checkUnit refuses a unit that only hints state where a line that is not understood
-// speaks of another.
-func (h *plainHead) checkUnit(hints Hints) error {
+// otherUnits are the words of lines that speak of a unit and not of the numbers:
+// what the instrument does, peaks, and gravity itself. unitStated are those of lines
+// that plainly speak of the numbers.
+var (
+	otherUnits  = regexp.MustCompile(`(?i)full.?scale|\brange\b|trigger|threshold|sensitivity|\bpeak\b|\bpga\b|\bmax(?:imum)?\b|\bg *= *\d|\b1 *g *=`)
+	unitStated  = regexp.MustCompile(`(?i)\bunits?\b|\bacc(?:el(?:eration)?s?)?\b|accelerogram|amplitude|\bvalues?\b|\bdata\b|\bsamples\b|scaled`)
+	afterNumber = regexp.MustCompile(`(?i)(?:[\d.] *|V */ *)$`)
+)
+
+// checkUnit refuses a unit that was stated for all files where a line that is not
+// understood seems to state another for the numbers; beside one that was stated for
+// this file it is a warning.
+func (h *plainHead) checkUnit(hints Hints) (warning string, err error) {
 	hint, err := ParseUnit(hints.Unit)
 	if err != nil {
-		return nil // chooseUnit says so
+		return "", nil // chooseUnit says so
 	}
 	for _, l := range h.lines {
-		if l.states(peakKeys) {
+		if l.states(peakKeys) || otherUnits.MatchString(l.text) {
 			continue
 		}
-		for _, m := range mentions(unitMentions, l.text) {
-			if unit, err := ParseUnit(strings.ReplaceAll(m[1], "ms2", "m/s2")); err == nil && unit.MPS2 != hint.MPS2 {
-				return refuse(l.line, "unit", "%s speaks of %s, %s says %s: state the unit as # unit: …", found(l.text), unit.Name, orElse(hints.UnitFrom, "the hint"), hint.Name)
+		unit, ok := l.otherUnit(hint)
+		switch {
+		case ok && hints.UnitForAll:
+			return "", refuse(l.line, "unit", "%s speaks of %s, %s says %s: state the unit as # unit: …", found(l.text), unit.Name, orElse(hints.UnitFrom, "the hint"), hint.Name)
+		case ok:
+			warning = fmt.Sprintf("line %d speaks of %s: %s from %s taken", l.line, unit.Name, hint.Name, orElse(hints.UnitFrom, "hint"))
+		}
+	}
+	return warning, nil
+}
+
+// otherUnit returns another unit than the hint's that the line seems to state: with
+// a word for the numbers, as all that it says, or as all that follows a key. A number
+// before it makes it a quantity, unless the line says unit.
+func (l heading) otherUnit(hint Unit) (Unit, bool) {
+	value := l.text[strings.LastIndexAny(l.text, ":=")+1:]
+	_, err := ParseUnit(value)
+	if err != nil && !unitStated.MatchString(l.text) {
+		return Unit{}, false
+	}
+	isUnit := strings.Contains(strings.ToLower(l.text), "unit")
+	for _, pattern := range unitMentions {
+		for _, m := range pattern.FindAllStringSubmatchIndex(l.text, -1) {
+			text := l.text[m[2]:m[3]]
+			unit, err := ParseUnit(strings.ReplaceAll(text, "ms2", "m/s2"))
+			if err == nil && unit.MPS2 != hint.MPS2 && (isUnit || !afterNumber.MatchString(l.text[:m[2]])) {
+				return unit, true
 			}
 		}
 	}
-	return nil
+	return Unit{}, false
 }
 
 // states reports whether the line has one of the keys.
@@ -86,10 +121,17 @@ func (l heading) states(keys []string) bool {
 	return slices.ContainsFunc(l.statements(), func(c comment) bool { return slices.Contains(keys, c.key) })
 }
 
+// otherSteps are the words of lines that speak of other intervals than that of the
+// numbers, or of what it was before.
+var otherSteps = regexp.MustCompile(`(?i)decimated|resampled|pre-?(?:event|trigger)|\btaper|baseline`)
+
 // checkStep refuses a step that only hints state where a line that is not understood
 // speaks of another. What is no step of a record counts something else.
 func (h *plainHead) checkStep(hints Hints) error {
 	for _, l := range h.lines {
+		if otherSteps.MatchString(l.text) {
+			continue
+		}
 		for _, m := range mentions(rateMentions, l.text) {
 			rate, ok := parseNumber([]byte(m[1]))
 			if ok && isOtherStep(1/rate, hints.StepS) {

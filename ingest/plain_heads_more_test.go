@@ -1,0 +1,54 @@
+package ingest
+
+import (
+	"strings"
+	"testing"
+)
+
+// Units and steps of other things than the numbers contradict no flag; a line that
+// speaks of the numbers does, and a row of a catalogue for the file overrides it.
+func TestPlainHeadsOfOtherUnits(t *testing.T) {
+	forAll := Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.01, StepFrom: "--dt", StepForAll: true}
+	var cases []headCase
+	for _, line := range []string{
+		"Sensor: ACME 3C, sensitivity 2.5 V/g", "Full scale: 2 g", "Instrument: 24 bit, +/-2 g, SN 123", "Trigger level: 0.005 g", "Threshold 5 mg, pre-event 10 s",
+		"Peak ground acceleration: 0.1238 g", "Max acceleration 0.1238 g at 4.9 s", "Station G, g = 9.81", "g = 980.665 cm/s2", "1 g = 9.80665 m/s2",
+		"Original sampling rate 200 Hz, decimated to 100 Hz", "Pre-event interval: 0.05 min", "Taper interval 0.05 s", "Step 0.02: baseline correction",
+	} {
+		cases = append(cases, headCase{line, "gal 0.01;"})
+	}
+	cases = append(cases, []headCase{
+		{"Amplitude unit: m/s2", `case:1: unit: "Amplitude unit: m/s2" speaks of m/s2, --unit says gal: state the unit as # unit: …`},
+		{"Einheit: m/s²", `case:1: unit: "Einheit: m/s²" speaks of m/s2, --unit says gal: state the unit as # unit: …`},
+		{"Units of 0.001 g", `case:1: unit: "Units of 0.001 g" speaks of g, --unit says gal: state the unit as # unit: …`},
+		{"# g", `case:1: unit: "g" speaks of g, --unit says gal: state the unit as # unit: …`},
+	}...)
+	checkHeads(t, cases, column(20, "%.4f"), forAll)
+	checkHeads(t, []headCase{{"DATA IN UNITS OF G", "gal 0.01;line 1 speaks of g: gal from catalogue line 2 taken"}},
+		column(20, "%.4f"), Hints{Unit: "gal", UnitFrom: "catalogue line 2", StepS: 0.01})
+}
+
+// Rows of units in brackets or quotes, and rules under names, are what they look like.
+func TestPlainHeadsOfUnitRows(t *testing.T) {
+	const three = "gal 0.02 h 0;gal 0.02 h 90;gal 0.02 v;"
+	checkHeads(t, []headCase{
+		{"\"Time\",\"NS\",\"EW\",\"UD\"\n\"s\",\"gal\",\"gal\",\"gal\"", three},
+		{"Time,NS,EW,UD\n----,--,--,--\ns,gal,gal,gal", three},
+	}, fourColumns(0.02), Hints{})
+	blanks := strings.Split(strings.ReplaceAll(strings.Join(fourColumns(0.02), "\n"), ",", " "), "\n")
+	checkHeads(t, []headCase{{"Time NS EW UD\n(s) (gal) (gal) (gal)", three}, {"Time NS EW UD\n[s] [gal] [gal] [gal]", three}}, blanks, Hints{})
+}
+
+// One unit of time and one of acceleration say what two columns are, and words that
+// name no quantity are a title.
+func TestPlainHeadsOfAnyWords(t *testing.T) {
+	checkHeads(t, []headCase{
+		{"Zeit [s],Beschleunigung [m/s²]", "m/s2 0.02;"}, {"時間(s),加速度(gal)", "gal 0.02;"}, {"Time/s,Acc/g", "g 0.02;"}, {"Time / s,a / (m/s^2)", "m/s2 0.02;"},
+		{"elapsed time (s),acc (gal)", "gal 0.02;"}, {"Time (s),Acc (gal)\n--------,---------", "gal 0.02;"},
+		{"Periodo (s),Aceleración (g)", `case:1: columns: column 1 is "Periodo (s)"; known are time, acc, velocity, displacement and directions (NS EW UD, N E Z, H1 H2 V, azimuths); a title or comment begins with #`},
+		{"NRC,HNE\n# unit: gal", "gal 0.02;"}, {"El Centro, 1940\n# unit: gal", "gal 0.02;"},
+		{"Temps,Vitesse", `case:1: columns: column 1 is "Temps"; known are time, acc, velocity, displacement and directions (NS EW UD, N E Z, H1 H2 V, azimuths); a title or comment begins with #`},
+	}, timed(even(20, 0.02), "%.2f", ","), Hints{})
+	checkHeads(t, []headCase{{"AMATRICE", "gal 0.01;"}, {"Record_17", "gal 0.01;"}, {"Accelerogram", "gal 0.01;"}}, column(20, "%.4f"), Hints{Unit: "gal", StepS: 0.01})
+	checkHeads(t, []headCase{{"elapsed (ms),acc (gal)", "gal 0.02;"}}, timed(even(20, 20), "%.0f", ","), Hints{})
+}
