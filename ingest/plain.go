@@ -123,6 +123,7 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		if warning != "" {
 			c.warn("%s", warning)
 		}
+		c.Warnings = append(c.Warnings, h.doubts...)
 		warnUnused(&c, hints)
 		if rows.minus > 0 {
 			c.warn("line %d: U+2212 read as a minus sign", rows.minus)
@@ -173,6 +174,10 @@ func warnOffset(c *Channel) {
 // unit joins what the column's name and the comments say with the hints.
 func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 	comment := h.stated(unitKeys...)
+	if h.isSure(comment.line) && hints.Unit != "" && !isUnitWord(comment.text) && len(mentions(unitMentions, comment.text)) == 0 {
+		h.doubt("line %d: unit %s not understood", comment.line, found(comment.text))
+		comment = statement{}
+	}
 	switch {
 	case col.unit.text != "":
 	case comment.text != "" || hints.Unit == "":
@@ -198,7 +203,10 @@ func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 // step joins what the time column, the comments and the hints say.
 func (h *plainHead) step(columns []plainColumn, rows *plainRows, hints Hints) (float64, error) {
 	stated, line, err := h.statedStep()
-	if err != nil {
+	if err != nil && stated == 0 && h.isSure(line) && hints.StepS != 0 {
+		h.doubt("line %d: time step or rate not understood", line)
+		line = 0
+	} else if err != nil {
 		return 0, err
 	}
 	for i, col := range columns {

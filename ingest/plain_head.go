@@ -2,7 +2,9 @@ package ingest
 
 import (
 	"bytes"
+	"fmt"
 	"math"
+	"regexp"
 	"slices"
 	"strings"
 )
@@ -14,6 +16,8 @@ type plainHead struct {
 	// lines are the lines before the numbers that are not blank, the last of names
 	// perhaps.
 	lines []heading
+	// doubts are warnings of lines that are not understood.
+	doubts []string
 }
 
 // comment is one key and value of a comment line.
@@ -87,10 +91,7 @@ func readPlainHead(t *Text) (*plainHead, error) {
 // "unit: cm/s2", or several "key=value" between commas or semicolons.
 func splitComment(text string, line int) []comment {
 	text = strings.TrimRight(text, "\" ,;\t")
-	parts := strings.FieldsFunc(text, func(r rune) bool { return r == ',' || r == ';' })
-	if slices.ContainsFunc(parts, func(p string) bool { return !strings.Contains(p, "=") }) {
-		parts = []string{text}
-	}
+	parts := splitStatements(text)
 	var out []comment
 	for _, p := range parts {
 		at := strings.IndexAny(p, "=:")
@@ -108,6 +109,43 @@ func splitComment(text string, line int) []comment {
 		out = append(out, comment{key: commentKey(key), value: value, line: line})
 	}
 	return out
+}
+
+var (
+	// pairs is a line of nothing but key=value between blanks.
+	pairs = regexp.MustCompile(`^(?:\w+ *= *[^\s=,;]+(?: +(?i:s|sec|seconds|hz|sps|ms|g|gal))?(?:[\s,;]+|$)){2,}$`)
+	pair  = regexp.MustCompile(`\w+ *= *[^\s=,;]+(?: +(?i:s|sec|seconds|hz|sps|ms|g|gal)\b)?`)
+)
+
+// splitStatements splits a line between its statements: where all that commas or
+// semicolons part are key=value, where blanks part such, and else before keys that
+// decide what the numbers mean.
+func splitStatements(text string) []string {
+	parts := strings.FieldsFunc(text, func(r rune) bool { return r == ',' || r == ';' })
+	if !slices.ContainsFunc(parts, func(p string) bool { return strings.Count(p, "=") != 1 }) {
+		return parts
+	}
+	if pairs.MatchString(text) {
+		return pair.FindAllString(text, -1)
+	}
+	from, at := 0, 0
+	var out []string
+	for _, p := range parts[:max(0, len(parts)-1)] {
+		at += len(p) + 1
+		rest := text[min(at, len(text)):]
+		if end := strings.IndexAny(rest, "=:"); end > 0 && isDeciding(rest[:end]) {
+			out = append(out, strings.Trim(text[from:at-1], " ,;"))
+			from = at
+		}
+	}
+	return append(out, strings.Trim(text[from:], " ,;"))
+}
+
+// isDeciding reports whether a key decides what the numbers mean.
+func isDeciding(key string) bool {
+	key, _ = splitUnit(strings.TrimSpace(key))
+	key = commentKey(key)
+	return slices.ContainsFunc([][]string{unitKeys, stepKeys, rateKeys, countKeys, directionKeys}, func(keys []string) bool { return slices.Contains(keys, key) })
 }
 
 // commentKey spells a key in lower case with underscores.
@@ -129,6 +167,18 @@ func (h *plainHead) stated(keys ...string) statement {
 	return statement{}
 }
 
+// doubt adds a warning, once.
+func (h *plainHead) doubt(form string, values ...any) {
+	if text := fmt.Sprintf(form, values...); !slices.Contains(h.doubts, text) {
+		h.doubts = append(h.doubts, text)
+	}
+}
+
+// isSure reports whether a line of the head is no comment.
+func (h *plainHead) isSure(line int) bool {
+	return slices.ContainsFunc(h.lines, func(l heading) bool { return l.line == line && l.sure })
+}
+
 // checkCount holds the number of values a channel has to the one that a comment
 // announces.
 func (h *plainHead) checkCount(values int) error {
@@ -138,6 +188,10 @@ func (h *plainHead) checkCount(values int) error {
 	}
 	v, unit, ok := quantity(s.text)
 	if !ok || unit != "" || v != math.Trunc(v) {
+		if h.isSure(s.line) {
+			h.doubt("line %d: count %s not understood", s.line, found(s.text))
+			return nil
+		}
 		return refuse(s.line, "samples", "expected a number of values, found %s", found(s.text))
 	}
 	if int(v) != values {
@@ -147,24 +201,31 @@ func (h *plainHead) checkCount(values int) error {
 }
 
 // statedStep returns the time step in s that comments state as step or rate,
-// which must agree, 0 where none does.
+// which must agree, 0 where none does. With an error it returns the line of the only
+// statement, which is not understood, and no step.
 func (h *plainHead) statedStep() (step float64, line int, err error) {
 	if s := h.stated(stepKeys...); s.text != "" {
 		v, unit, ok := quantity(s.text)
 		switch {
 		case ok && v > 0 && (unit == "" || isSeconds(unit)):
 			step, line = v, s.line
-		case ok && v > 0 && unit == "ms":
+		case ok && v > 0 && (unit == "ms" || unit == "msec"):
 			step, line = v/1000, s.line
 		default:
-			return 0, 0, refuse(s.line, "dt", "expected a time step over zero in s, found %s", found(s.text))
+			if h.stated(rateKeys...).text == "" {
+				line = s.line
+			}
+			return 0, line, refuse(s.line, "dt", "expected a time step over zero in s, found %s", found(s.text))
 		}
 	}
 	if s := h.stated(rateKeys...); s.text != "" {
 		v, unit, ok := quantity(s.text)
 		switch {
-		case !ok || !(v > 0) || unit != "" && unit != "hz" && unit != "sps":
-			return 0, 0, refuse(s.line, "rate", "expected a sampling rate over zero in Hz, found %s", found(s.text))
+		case !ok || !(v > 0) || unit != "" && !slices.Contains(perSecondOf, unit):
+			if step == 0 {
+				line = s.line
+			}
+			return step, line, refuse(s.line, "rate", "expected a sampling rate over zero in Hz, found %s", found(s.text))
 		case step == 0:
 			return 1 / v, s.line, nil
 		case math.Abs(step*v-1) > stepAgreement:
@@ -182,10 +243,23 @@ func isSeconds(unit string) bool {
 	return false
 }
 
+// twice is a quantity that is repeated in other units in brackets, 100 Hz (0.01 s),
+// or has its own there.
+var twice = regexp.MustCompile(`^([\d.]+(?: *[A-Za-z]+)?) *(?:\([\d.]+ *[A-Za-z]+\)|\(([A-Za-z]+)\))$`)
+
+// perSecondOf are the ways to write samples a second.
+var perSecondOf = []string{"hz", "sps", "samples/s", "samples/sec", "samples/second", "samples per second", "samples per sec"}
+
 // quantity splits "0.01 s" or "100Hz" into number and unit, the unit in lower
 // case.
 func quantity(text string) (v float64, unit string, ok bool) {
 	text = strings.TrimSpace(text)
+	if m := twice.FindStringSubmatch(text); m != nil {
+		text = m[1] + m[2]
+	}
+	if strings.HasPrefix(text, "0,") {
+		text = strings.Replace(text, ",", ".", 1) // no thousands begin with 0
+	}
 	end := len(text)
 	for end > 0 && !isDigit(text[end-1]) && text[end-1] != '.' {
 		end--

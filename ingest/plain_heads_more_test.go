@@ -52,3 +52,20 @@ func TestPlainHeadsOfAnyWords(t *testing.T) {
 	checkHeads(t, []headCase{{"AMATRICE", "gal 0.01;"}, {"Record_17", "gal 0.01;"}, {"Accelerogram", "gal 0.01;"}}, column(20, "%.4f"), Hints{Unit: "gal", StepS: 0.01})
 	checkHeads(t, []headCase{{"elapsed (ms),acc (gal)", "gal 0.02;"}}, timed(even(20, 20), "%.0f", ","), Hints{})
 }
+
+// Several statements on a line are told apart, and what is not understood gives way to
+// a flag where it is no comment.
+func TestPlainHeadsOfSeveralStatements(t *testing.T) {
+	checkHeads(t, []headCase{
+		{"NPTS=20 DT=0.01 SEC\nUnits: gal", "gal 0.01;"}, {"Units: gal, DT=0.01 s, NPTS=20", "gal 0.01;"}, {"DT=0.01, NPTS=20, Units: gal", "gal 0.01;"},
+		{"Units: gal;;;\ndt = 0,01", "gal 0.01;"}, {"Units: gal\nSampling rate: 100 samples/sec", "gal 0.01;"}, {"Units: gal\ndt: 10 msec", "gal 0.01;"},
+		{"Units: gal\ndt: 0.01\nSamples: 20 (0.2 s)", "gal 0.01;"}, {"Units: gal\nrate: 100 Hz (0.01 s)", "gal 0.01;"},
+		{"ACCELERATION, G\ndt: 0.01", "g 0.01;"},
+	}, column(20, "%.4f"), Hints{})
+	checkHeads(t, []headCase{
+		{"Unit: SMA-1 No 23", `gal 0.01;line 1: unit "SMA-1 No 23" not understood`}, {"dt: 1/100 s", "gal 0.01;line 1: time step or rate not understood"},
+		{"Samples: many", `gal 0.01;line 1: count "many" not understood`},
+		{"dt: 0.005\nrate: fast", `case:2: rate: expected a sampling rate over zero in Hz, found "fast"`}, {"dt: 0.005\nrate: 100 Hz", "case:2: rate: 100 Hz here, a time step of 0.005 s in line 1"},
+		{"# unit: SMA-1", `case:1: unit: unknown unit "SMA-1"; known are g, mg, m/s2, cm/s2, gal, mm/s2, in/s2, ft/s2`},
+	}, column(20, "%.4f"), Hints{Unit: "gal", UnitForAll: true, StepS: 0.01, StepForAll: true})
+}

@@ -17,7 +17,14 @@ func (l heading) statements() []comment {
 			out[i].value = oneUnit(c.value)
 		}
 	}
-	if base, unit := splitUnit(l.text); slices.Contains(accelerationNames, commentKey(base)) {
+	base, unit := splitUnit(l.text)
+	if name, after, ok := strings.Cut(l.text, ","); ok && unit == "" {
+		base, unit = name, strings.TrimSpace(after) // ACCELERATION, G
+		if before, _, more := strings.Cut(after, ","); more {
+			unit = strings.TrimSpace(before)
+		}
+	}
+	if slices.Contains(accelerationNames, commentKey(base)) {
 		if _, err := ParseUnit(unit); err == nil {
 			out = append(out, comment{key: "unit", value: unit, line: l.line})
 		}
