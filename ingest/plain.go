@@ -2,6 +2,7 @@ package ingest
 
 import (
 	"bytes"
+	"errors"
 	"math"
 	"strings"
 )
@@ -64,6 +65,9 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 		return nil, err
 	}
 	if err := head.checkOthers(t); err != nil {
+		return nil, err
+	}
+	if err := head.otherSeries(); err != nil {
 		return nil, err
 	}
 	if err := head.checkRepeats(); err != nil {
@@ -237,7 +241,12 @@ func (h *plainHead) step(columns []plainColumn, rows *plainRows, hints Hints) (f
 	case stated != 0:
 		return stated, checkStep(stated, line, hints)
 	case hints.StepS != 0:
-		return hints.StepS, h.checkStep(hints)
+		err := h.checkStep(hints)
+		if pe, ok := errors.AsType[*ParseError](err); ok && !hints.StepForAll {
+			h.doubt("line %d: %s", pe.Line, pe.Err)
+			err = nil
+		}
+		return hints.StepS, err
 	}
 	return 0, refuse(0, "dt", "the file states no time step: give it with --dt or in the catalogue's dt_s column")
 }

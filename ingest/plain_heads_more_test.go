@@ -24,6 +24,8 @@ func TestPlainHeadsOfOtherUnits(t *testing.T) {
 		{"# g", `case:1: unit: "g" speaks of g, --unit says gal: state the unit as # unit: …`},
 	}...)
 	checkHeads(t, cases, column(20, "%.4f"), forAll)
+	checkHeads(t, []headCase{{"SPS 200", `gal 0.01;line 1: "SPS 200" speaks of 200 samples a second, catalogue line 2 says a step of 0.01 s: state it as # rate = …`}},
+		column(20, "%.4f"), Hints{Unit: "gal", StepS: 0.01, StepFrom: "catalogue line 2"})
 	checkHeads(t, []headCase{{"DATA IN UNITS OF G", "gal 0.01;line 1 speaks of g: gal from catalogue line 2 taken"}},
 		column(20, "%.4f"), Hints{Unit: "gal", UnitFrom: "catalogue line 2", StepS: 0.01})
 }
@@ -68,4 +70,19 @@ func TestPlainHeadsOfSeveralStatements(t *testing.T) {
 		{"dt: 0.005\nrate: fast", `case:2: rate: expected a sampling rate over zero in Hz, found "fast"`}, {"dt: 0.005\nrate: 100 Hz", "case:2: rate: 100 Hz here, a time step of 0.005 s in line 1"},
 		{"# unit: SMA-1", `case:1: unit: unknown unit "SMA-1"; known are g, mg, m/s2, cm/s2, gal, mm/s2, in/s2, ft/s2`},
 	}, column(20, "%.4f"), Hints{Unit: "gal", UnitForAll: true, StepS: 0.01, StepForAll: true})
+}
+
+// Lines that say of the numbers what no flag may override.
+func TestPlainHeadsAgainstFlags(t *testing.T) {
+	scale := func(line string) string {
+		return `case:1: unit: "` + line + `" speaks of counts or a scale, --unit says gal: state the unit as # unit: …`
+	}
+	checkHeads(t, []headCase{
+		{"# raw counts", scale("raw counts")}, {"1 count = 0.001 gal", scale("1 count = 0.001 gal")}, {"Scale Factor 3920(gal)/6182761", scale("Scale Factor 3920(gal)/6182761")},
+		{"Data every 0.005 sec", `case:1: dt: "Data every 0.005 sec" speaks of a step of 0.005 s, --dt says 0.01 s: state it as # dt = …`},
+		{"Frequency: 200 Hz", `case:1: dt: "Frequency: 200 Hz" speaks of 200 samples a second, --dt says a step of 0.01 s: state it as # rate = …`},
+		{"SPS 200", `case:1: dt: "SPS 200" speaks of 200 samples a second, --dt says a step of 0.01 s: state it as # rate = …`},
+		{"Frequency: 25 Hz", "gal 0.01;"}, {"ACCELERATION, GAL", "gal 0.01;"},
+		{"Quantity: Velocity", "skip: velocity series, not acceleration"}, {"# Type: displacement", "skip: displacement series, not acceleration"}, {"# Type: broadband", "gal 0.01;"},
+	}, column(20, "%.4f"), Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.01, StepFrom: "--dt", StepForAll: true})
 }

@@ -62,9 +62,11 @@ var (
 		regexp.MustCompile(`(?i)(?:sampling|sample) *(?:rate|frequency)[^\d.]{0,20}([\d.]+)`),
 		regexp.MustCompile(`(?i)\bfs\b[^\d.]{0,5}([\d.]+)`),
 		regexp.MustCompile(`(?i)^([\d.]+) *hz$`),
+		regexp.MustCompile(`(?i)^sps\W+([\d.]+)$`),
+		regexp.MustCompile(`(?i)^freq(?:uency)?\W+((?:[5-9]\d|[1-9]\d\d)(?:\.\d*)?) *(?:hz)?$`), // lower ones are corners
 	}
 	stepMentions = []*regexp.Regexp{
-		regexp.MustCompile(`(?i)(?:\bdt\b|\bdelta[ _]?t\b|Δt|\btime[ _-]?step|\bstep\b|intervals?\b|sampling[ _-]?period)[^\d.]{0,20}(\d*\.?\d+(?:e[-+]?\d+)?)( *ms| *msec| *milli)?`),
+		regexp.MustCompile(`(?i)(?:\bdt\b|\bdelta[ _]?t\b|Δt|\btime[ _-]?step|\bstep\b|intervals?\b|sampling[ _-]?period|\bevery\b)[^\d.]{0,20}(\d*\.?\d+(?:e[-+]?\d+)?)( *ms| *msec| *milli)?`),
 		regexp.MustCompile(`(?i)(\d*\.?\d+)( *ms| *msec| *milli)?[a-z ]{0,8} (?:intervals?|steps?|apart)\b`),
 	}
 )
@@ -78,6 +80,9 @@ var (
 	afterNumber = regexp.MustCompile(`(?i)(?:[\d.] *|V */ *)$`)
 )
 
+// scaled is a line that says that the numbers are counts, or by what to multiply them.
+var scaled = regexp.MustCompile(`(?i)^(?:raw|digital|digiti[sz]er) *counts?$|\b1 *counts? *=|^scale factor\W*[\d.]+ *\(.*/`)
+
 // checkUnit refuses a unit that was stated for all files where a line that is not
 // understood seems to state another for the numbers; beside one that was stated for
 // this file it is a warning.
@@ -87,6 +92,13 @@ func (h *plainHead) checkUnit(hints Hints) (warning string, err error) {
 		return "", nil // chooseUnit says so
 	}
 	for _, l := range h.lines {
+		if scaled.MatchString(l.text) {
+			if hints.UnitForAll {
+				return "", refuse(l.line, "unit", "%s speaks of counts or a scale, %s says %s: state the unit as # unit: …", found(l.text), orElse(hints.UnitFrom, "the hint"), hint.Name)
+			}
+			warning = fmt.Sprintf("line %d speaks of counts or a scale: %s from %s taken", l.line, hint.Name, orElse(hints.UnitFrom, "hint"))
+			continue
+		}
 		if l.states(peakKeys) || otherUnits.MatchString(l.text) {
 			continue
 		}
