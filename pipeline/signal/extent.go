@@ -20,7 +20,7 @@ func EndAbove(x []float64, stepS float64, quiet, from int, floor, factor float64
 	for _, v := range y[quiet:from] {
 		noise += float64(v * v)
 	}
-	power := factor * max(floor, noise/float64(max(1, from-quiet)))
+	power := float64(factor * max(floor, noise/float64(max(1, from-quiet))))
 	end, sum, top := len(x), 0.0, 0.0
 	for i := from; i < len(y); i++ {
 		if sum += float64(y[i]*y[i]) - power; sum > top {
