@@ -269,7 +269,8 @@ var roleTables = append([]string{"component"}, computedTables...)
 // MoveComponents gives components of one record, by their roles, to another, where they
 // have the roles that these are the keys of, with their spectra and measures. What their
 // files, by paths, state of the record goes along, and stays where nothing that stays says
-// otherwise: of equal statements one file's is kept. What was rotated of either record's horizontals is removed.
+// otherwise: of equal statements one file's is kept. What was rotated of either record's
+// horizontals is removed.
 func (t *Tx) MoveComponents(ctx context.Context, from, to int64, roles map[string]string, paths []string) error {
 	for _, id := range []int64{from, to} {
 		if err := t.forgetRotated(ctx, id); err != nil {

@@ -52,37 +52,37 @@ const maxVersions = 20
 // not belong gets a record of its own, whose code says why. A channel that states no
 // direction, and another content of a file that is held, are errors.
 func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (placement, error) {
-	code, err := findRecord(ctx, tx, res, c)
+	r, err := findRecord(ctx, tx, res, c)
 	if err != nil {
 		return placement{}, err
 	}
-	p, rival, err := placeVersion(ctx, tx, code, res, c)
+	p, rival, err := placeVersion(ctx, tx, r, res, c)
 	if err != nil || rival == nil {
 		return p, err
 	}
-	code += "_ch" + ingest.Slug(c.ChannelCode)
-	if p, rival, err = placeVersion(ctx, tx, code, res, c); rival != nil {
-		err = takenError(code, *rival, res.source, c)
+	if r, err = recordOfCode(ctx, tx, r.Code+"_ch"+ingest.Slug(c.ChannelCode)); err != nil {
+		return p, err
+	}
+	if p, rival, err = placeVersion(ctx, tx, r, res, c); rival != nil {
+		err = takenError(r.Code, *rival, res.source, c)
 	}
 	return p, err
 }
 
 // placeVersion finds the version of the record to which the channel belongs, the
-// record itself or one of code_v2, code_v3 …. rival is the component of another
+// record itself, r, or one of code_v2, code_v3 …. rival is the component of another
 // sensor that has the channel's direction.
-func placeVersion(ctx context.Context, tx *db.Tx, code string, res result, c *ingest.Channel) (p placement, rival *db.Component, err error) {
+func placeVersion(ctx context.Context, tx *db.Tx, r db.StoredRecord, res result, c *ingest.Channel) (p placement, rival *db.Component, err error) {
 	var found versionsFound
+	code := r.Code
 	for n := 1; found.nearest < nearestOf(res); n++ {
-		version := code
 		if n > 1 {
-			version = fmt.Sprintf("%s_v%d", code, n)
+			if r, err = recordOfCode(ctx, tx, fmt.Sprintf("%s_v%d", code, n)); err != nil {
+				return p, nil, err
+			}
 		}
-		r, held, err := tx.FindRecord(ctx, version)
-		if err != nil {
-			return p, nil, err
-		}
-		if !held {
-			found.free = version
+		if r.ID == 0 {
+			found.free = r.Code
 			break
 		}
 		if !isSameVersion(r, res, c) {
@@ -92,11 +92,12 @@ func placeVersion(ctx context.Context, tx *db.Tx, code string, res result, c *in
 		switch {
 		case rival == nil:
 		case isAmended(rival, res.source) || hasNoDirection(rival, c) || n > maxVersions:
-			return p, nil, takenError(version, *rival, res.source, c)
+			return p, nil, takenError(r.Code, *rival, res.source, c)
 		case c.ChannelCode != "" && rival.Channel != c.ChannelCode:
 			return p, rival, nil
 		}
-		found.add(&r, rival, res, c)
+		version := r
+		found.add(&version, rival, res, c)
 	}
 	to := found.chosen()
 	p, rival = join(to, c)
@@ -271,28 +272,35 @@ func hasNoDirection(held *db.Component, c *ingest.Channel) bool {
 	return c.Orientation.Axis == ingest.AxisUnknown || held.Axis == axes[ingest.AxisUnknown]
 }
 
-// findRecord returns the code of the record to which the channel belongs by what it
-// states, which may be a new one.
-func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (code string, err error) {
+// recordOfCode returns the record with this code, without ID where it is a new one.
+func recordOfCode(ctx context.Context, tx *db.Tx, code string) (db.StoredRecord, error) {
+	r, _, err := tx.FindRecord(ctx, code)
+	r.Code = code
+	return r, err
+}
+
+// findRecord returns the record to which the channel belongs by what it states, which may
+// be a new one.
+func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (db.StoredRecord, error) {
 	code, stated := ingest.RecordID(c, res.stem)
 	if !stated {
 		return findInFolder(ctx, tx, res, code)
 	}
-	r, _, err := tx.FindRecord(ctx, code)
+	r, err := recordOfCode(ctx, tx, code)
 	if err != nil || !startsApart(r.Start, c.Start) {
-		return code, err
+		return r, err
 	}
 	later, ok, err := tx.FindTrigger(ctx, code, c.Start, startTolerance)
 	if ok || err != nil {
-		return later.Code, err
+		return later, err
 	}
-	return code + c.Start.UTC().Format("_T150405"), nil
+	return db.StoredRecord{Code: code + c.Start.UTC().Format("_T150405")}, nil
 }
 
-// findInFolder returns the code of the record of files without identity that lie in the
+// findInFolder returns the record of files without identity that lie in the
 // file's folder, by what their names have in common: code, or the folder's name where that
 // is nothing but a direction. In other folders others may have that code.
-func findInFolder(ctx context.Context, tx *db.Tx, res result, code string) (string, error) {
+func findInFolder(ctx context.Context, tx *db.Tx, res result, code string) (db.StoredRecord, error) {
 	if base, o := ingest.SplitStem(res.stem); base == res.stem && o.Axis != ingest.AxisUnknown {
 		code = cmp.Or(ingest.Slug(path.Base(folderOf(res.source.Path))), code)
 	}
@@ -303,9 +311,9 @@ func findInFolder(ctx context.Context, tx *db.Tx, res result, code string) (stri
 		case n > 2:
 			code = fmt.Sprintf("%s_%s-%d", base, folderSlug(res), n-1)
 		}
-		r, _, err := tx.FindRecord(ctx, code)
+		r, err := recordOfCode(ctx, tx, code)
 		if err != nil || len(r.Components) == 0 || archive.Folder(r.Components[0].SourcePath) == archive.Folder(res.source.Path) {
-			return code, err
+			return r, err
 		}
 	}
 }
