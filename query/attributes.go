@@ -245,11 +245,8 @@ func siteClasses(s *db.Station) (en1998, nehrp string) {
 // year is that of the origin, UTC, or of the record's start where the origin is
 // unknown.
 func year(r *db.Record) int {
-	switch {
-	case r.Event != nil && !r.Event.Origin.IsZero():
-		return r.Event.Origin.UTC().Year()
-	case !r.Start.IsZero():
-		return r.Start.UTC().Year()
+	if t := timeOf(r); !t.IsZero() {
+		return t.Year()
 	}
 	return noYear
 }

@@ -26,7 +26,8 @@ func usage(what, format string, args ...any) *UsageError {
 // EmptyError says that a selection holds no motion, and why.
 type EmptyError struct {
 	Held    int       // records in the store
-	Unmet   int       // records that do not meet the expression
+	Outside int       // records outside the scope
+	Unmet   int       // other records that do not meet the expression
 	LeftOut []LeftOut // records left out for another reason
 	Hint    string    // what to try, or ""
 }
@@ -34,6 +35,9 @@ type EmptyError struct {
 // Error gives the counts and reasons in one line.
 func (e *EmptyError) Error() string {
 	var parts []string
+	if e.Outside > 0 {
+		parts = append(parts, countOf(e.Outside, "record is", "records are")+" outside the place, time or event that was asked for")
+	}
 	if e.Unmet > 0 {
 		parts = append(parts, countOf(e.Unmet, "record does", "records do")+" not meet the expression")
 	}

@@ -83,6 +83,7 @@ func (r *SelectionReport) Remarks() string {
 func (r *SelectionReport) heading() string {
 	text := fmt.Sprintf("%s, %s, %s; component %s; siting %s", countOf(r.Records, "record", "records"),
 		countOf(r.Spectra, "spectrum", "spectra"), countOf(r.Events, "event", "events"), r.Component.inWords(), r.Siting)
+	text += r.Scope.words()
 	if r.Where != "" {
 		text += "; where " + r.Where
 	}

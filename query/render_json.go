@@ -144,6 +144,7 @@ func (r *SelectionReport) object() object {
 		{"recipe", r.Recipe},
 		{"screen", string(r.Screen)},
 	}
+	o = append(o, r.Scope.fields()...)
 	if r.Method != defaultMethod {
 		o = append(o, field{"method", r.Method.String()})
 	}

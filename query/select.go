@@ -28,6 +28,7 @@ type picked struct {
 	motions []motion
 	report  SelectionReport
 	unmet   int
+	outside int
 	held    int
 	leftOut map[string]int // records by reason
 	hint    string         // where nothing is left
@@ -52,7 +53,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
-	details |= condition.details()
+	details |= condition.details() | s.Scope.details()
 	if s.Component.IsRotated() || s.Component == ComponentAll || !s.IncludeUnknownDirections {
 		details |= db.DetailMotion // by which pairs are rotated, and what is horizontal
 	}
@@ -69,9 +70,12 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
+	if s.Scope, err = s.Scope.withLatest(held); err != nil {
+		return nil, err
+	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, details: details}
 	p.hint, p.leftOut, p.ignoresBand, p.screen = p.hintOf(), map[string]int{}, s.IgnoreUsableBand, s.Screen
-	p.report = SelectionReport{Where: s.Where, Component: s.Component, Siting: s.Siting, Recipe: snapshot.Generation.Recipe.Name, Screen: s.Screen}
+	p.report = SelectionReport{Where: s.Where, Scope: s.Scope, Component: s.Component, Siting: s.Siting, Recipe: snapshot.Generation.Recipe.Name, Screen: s.Screen}
 	p.motions = make([]motion, 0, len(held))
 	p.verticals = map[int64]*db.HeldComponent{}
 	for i := range held {
@@ -185,6 +189,10 @@ func (p *picker) unsolvedBy(m *motion) string {
 // count only what the question is about.
 func (p *picker) take(components []db.HeldComponent) error {
 	p.held++
+	if _, isIn := p.selection.Scope.ask(components[0].Record); !isIn {
+		p.outside++
+		return nil
+	}
 	candidates, lacking := p.candidatesOf(components)
 	unmet := len(candidates) > 0
 	var reasons []string
@@ -252,10 +260,23 @@ func (m *motion) hasDamagedPeaks() bool {
 	return slices.ContainsFunc(m.members, func(c *db.HeldComponent) bool { return c.AreDamaged() })
 }
 
-// ask asks the expression of a motion. Where that lacks a number which the
+// ask asks the scope and the expression of a motion. Where that lacks what they need, it
+// counts as met.
+func (p *picker) ask(m *motion) (unknown string, met bool, err error) {
+	lacking, isIn := p.selection.Scope.ask(m.members[0].Record)
+	if !isIn {
+		return "", false, nil
+	}
+	if unknown, met, err = p.askExpression(m); unknown == "" {
+		unknown = lacking
+	}
+	return unknown, met, err
+}
+
+// askExpression asks the expression of a motion. Where that lacks a number which the
 // expression uses, it counts as met; but where peaks of a rotated pair are all that
 // is lacking, only if it is met with some peaks.
-func (p *picker) ask(m *motion) (unknown string, met bool, err error) {
+func (p *picker) askExpression(m *motion) (unknown string, met bool, err error) {
 	if p.condition == nil {
 		return "", true, nil
 	}
@@ -330,7 +351,7 @@ func (p *picked) finish() error {
 	}
 	p.report = r
 	if len(p.motions) == 0 {
-		return &EmptyError{Held: p.held, Unmet: p.unmet, LeftOut: r.LeftOut, Hint: p.hint}
+		return &EmptyError{Held: p.held, Outside: p.outside, Unmet: p.unmet, LeftOut: r.LeftOut, Hint: p.hint}
 	}
 	return nil
 }

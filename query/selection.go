@@ -169,6 +169,7 @@ func joinWords[T ~string](words []T) string {
 // direction: stored, or computed from the samples where they are not.
 type Selection struct {
 	Where     string // "" takes all
+	Scope     Scope
 	Component Component
 	Siting    Siting
 	// IncludeDuplicates takes motions too that the store holds in a better version;
@@ -203,6 +204,9 @@ func (s Selection) withDefaults(component Component, siting Siting, accepted []C
 	if err := checkComponent(s.Component, accepted); err != nil {
 		return s, err
 	}
+	if err := s.Scope.validate(); err != nil {
+		return s, err
+	}
 	var err error
 	if s.Screen, err = ParseScreen(string(s.Screen)); err != nil {
 		return s, err
@@ -214,6 +218,7 @@ func (s Selection) withDefaults(component Component, siting Siting, accepted []C
 // SelectionReport says what a selection took and what it left out.
 type SelectionReport struct {
 	Where     string
+	Scope     Scope // with the event's code in place of EventLatest
 	Component Component
 	Siting    Siting
 	Recipe    string // by which the components are conditioned

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"slices"
 
 	"github.com/urfave/cli/v2"
 
@@ -25,6 +26,10 @@ func queryCommand() *cli.Command {
 func selectionFlags(component, siting string) []cli.Flag {
 	return []cli.Flag{
 		&cli.StringFlag{Name: "where", Usage: "boolean `EXPR` over attributes, such as 'magnitude >= 6 and distance_km < 30'"},
+		&cli.StringFlag{Name: "near", Usage: "stations within a distance: `LAT,LON,KM`, degrees positive north and east"},
+		&cli.StringFlag{Name: "since", Usage: "events from `DATE` on: 2019, 2019-07, 2019-07-06 or 2019-07-06T03:19:53Z (UTC)"},
+		&cli.StringFlag{Name: "until", Usage: "events up to `DATE`, the whole of that year, month or day"},
+		&cli.StringFlag{Name: "event", Usage: "records of one event by its `CODE`, or latest: the last in the rest of what is asked for"},
 		&cli.StringFlag{Name: "component", Usage: component},
 		&cli.StringFlag{Name: "siting", Usage: siting},
 	}
@@ -52,7 +57,14 @@ func formatFlag(choices string) cli.Flag {
 
 // newSelection reads the selection flags.
 func newSelection(c *cli.Context, component func(string) (query.Component, error), siting func(string) (query.Siting, error)) (s query.Selection, err error) {
-	s.Where = c.String("where")
+	s.Where, s.Scope.Event = c.String("where"), c.String("event")
+	err = errors.Join(
+		parseInto(&s.Scope.Near, c, "near", query.ParseNear),
+		parseInto(&s.Scope.Since, c, "since", query.ParseSince),
+		parseInto(&s.Scope.Until, c, "until", query.ParseUntil))
+	if err != nil {
+		return s, err
+	}
 	if s.Component, err = component(c.String("component")); err != nil {
 		return s, err
 	}
@@ -221,7 +233,7 @@ func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
 		switch {
 		case !c.Bool(flag):
 			continue
-		case c.IsSet("where") || c.IsSet("component") || c.IsSet("siting"):
+		case slices.ContainsFunc(selectionFlags("", ""), func(f cli.Flag) bool { return c.IsSet(f.Names()[0]) }):
 			return o, usagef("--%s lists no components, and nothing that has attributes to select by", flag)
 		case o.list != nil:
 			return o, usagef("--rejected and --conflicts are two lists: ask for one")
