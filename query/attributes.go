@@ -72,51 +72,77 @@ type attributes struct {
 // noYear is the year of a record that knows no time.
 const noYear = math.MinInt
 
-// numbers lists the attributes that can be unknown in the sense of an
+// numbers lists the attributes that can be unknown, NaN, in the sense of an
 // expression: a motion that lacks one which the expression uses is left out.
 var numbers = []struct {
-	name  string
-	known func(*attributes) bool
+	name string
+	of   func(*attributes) float64
 }{
-	{"magnitude", func(a *attributes) bool { return isKnown(a.Magnitude) }},
-	{"distance_km", func(a *attributes) bool { return isKnown(a.DistanceKM) }},
-	{"epicentral_km", func(a *attributes) bool { return isKnown(a.EpicentralKM) }},
-	{"hypocentral_km", func(a *attributes) bool { return isKnown(a.HypocentralKM) }},
-	{"rupture_km", func(a *attributes) bool { return isKnown(a.RuptureKM) }},
-	{"jb_km", func(a *attributes) bool { return isKnown(a.JoynerBooreKM) }},
-	{"vs30_m_s", func(a *attributes) bool { return isKnown(a.Vs30MPS) }},
-	{"depth_km", func(a *attributes) bool { return isKnown(a.DepthKM) }},
-	{"event_latitude", func(a *attributes) bool { return isKnown(a.EventLatitude) }},
-	{"event_longitude", func(a *attributes) bool { return isKnown(a.EventLongitude) }},
-	{"station_latitude", func(a *attributes) bool { return isKnown(a.StationLatitude) }},
-	{"station_longitude", func(a *attributes) bool { return isKnown(a.StationLongitude) }},
-	{"dt_s", func(a *attributes) bool { return isKnown(a.StepS) }},
-	{"samples", func(*attributes) bool { return true }},
-	{"duration_s", func(a *attributes) bool { return isKnown(a.DurationS) }},
-	{"pga_g", func(a *attributes) bool { return isKnown(a.PGA) }},
-	{"pgv_m_s", func(a *attributes) bool { return isKnown(a.PGV) }},
-	{"pgd_m", func(a *attributes) bool { return isKnown(a.PGD) }},
-	{"arias_m_s", func(a *attributes) bool { return isKnown(a.Arias) }},
-	{"cav_m_s", func(a *attributes) bool { return isKnown(a.CAV) }},
-	{"cav_standardised_m_s", func(a *attributes) bool { return isKnown(a.StandardisedCAV) }},
-	{"d5_75_s", func(a *attributes) bool { return isKnown(a.Significant575) }},
-	{"d5_95_s", func(a *attributes) bool { return isKnown(a.Significant595) }},
-	{"bracketed_s", func(a *attributes) bool { return isKnown(a.Bracketed) }},
-	{"rms_m_s2", func(a *attributes) bool { return isKnown(a.RMS) }},
-	{"mean_period_s", func(a *attributes) bool { return isKnown(a.MeanPeriod) }},
-	{"spectrum_intensity_m", func(a *attributes) bool { return isKnown(a.SpectrumIntensity) }},
-	{"azimuth_deg", func(a *attributes) bool { return isKnown(a.AzimuthDeg) }},
-	{"low_cut_hz", func(a *attributes) bool { return isKnown(a.LowCutHz) }},
-	{"high_cut_hz", func(a *attributes) bool { return isKnown(a.HighCutHz) }},
-	{"usable_from_s", func(a *attributes) bool { return isKnown(a.UsableFromS) }},
-	{"usable_to_s", func(a *attributes) bool { return isKnown(a.UsableToS) }},
-	{"year", func(a *attributes) bool { return a.Year != noYear }},
+	{"magnitude", func(a *attributes) float64 { return a.Magnitude }},
+	{"distance_km", func(a *attributes) float64 { return a.DistanceKM }},
+	{"epicentral_km", func(a *attributes) float64 { return a.EpicentralKM }},
+	{"hypocentral_km", func(a *attributes) float64 { return a.HypocentralKM }},
+	{"rupture_km", func(a *attributes) float64 { return a.RuptureKM }},
+	{"jb_km", func(a *attributes) float64 { return a.JoynerBooreKM }},
+	{"vs30_m_s", func(a *attributes) float64 { return a.Vs30MPS }},
+	{"depth_km", func(a *attributes) float64 { return a.DepthKM }},
+	{"event_latitude", func(a *attributes) float64 { return a.EventLatitude }},
+	{"event_longitude", func(a *attributes) float64 { return a.EventLongitude }},
+	{"station_latitude", func(a *attributes) float64 { return a.StationLatitude }},
+	{"station_longitude", func(a *attributes) float64 { return a.StationLongitude }},
+	{"dt_s", func(a *attributes) float64 { return a.StepS }},
+	{"samples", func(a *attributes) float64 { return float64(a.Samples) }},
+	{"duration_s", func(a *attributes) float64 { return a.DurationS }},
+	{"pga_g", func(a *attributes) float64 { return a.PGA }},
+	{"pgv_m_s", func(a *attributes) float64 { return a.PGV }},
+	{"pgd_m", func(a *attributes) float64 { return a.PGD }},
+	{"arias_m_s", func(a *attributes) float64 { return a.Arias }},
+	{"cav_m_s", func(a *attributes) float64 { return a.CAV }},
+	{"cav_standardised_m_s", func(a *attributes) float64 { return a.StandardisedCAV }},
+	{"d5_75_s", func(a *attributes) float64 { return a.Significant575 }},
+	{"d5_95_s", func(a *attributes) float64 { return a.Significant595 }},
+	{"bracketed_s", func(a *attributes) float64 { return a.Bracketed }},
+	{"rms_m_s2", func(a *attributes) float64 { return a.RMS }},
+	{"mean_period_s", func(a *attributes) float64 { return a.MeanPeriod }},
+	{"spectrum_intensity_m", func(a *attributes) float64 { return a.SpectrumIntensity }},
+	{"azimuth_deg", func(a *attributes) float64 { return a.AzimuthDeg }},
+	{"low_cut_hz", func(a *attributes) float64 { return a.LowCutHz }},
+	{"high_cut_hz", func(a *attributes) float64 { return a.HighCutHz }},
+	{"usable_from_s", func(a *attributes) float64 { return a.UsableFromS }},
+	{"usable_to_s", func(a *attributes) float64 { return a.UsableToS }},
+	{"year", yearOf},
 }
 
-// texts lists the attributes that are strings.
-var texts = []string{
-	"record", "event", "event_name", "magnitude_type", "station", "network", "station_name",
-	"siting", "site_class_en1998", "site_class_nehrp", "instrument", "component", "axis", "format", "processing", "source", "warnings",
+// yearOf is NaN where no time is known.
+func yearOf(a *attributes) float64 {
+	if a.Year == noYear {
+		return math.NaN()
+	}
+	return float64(a.Year)
+}
+
+// texts lists the attributes that are strings, "" where unknown.
+var texts = []struct {
+	name string
+	of   func(*attributes) string
+}{
+	{"record", func(a *attributes) string { return a.Record }},
+	{"event", func(a *attributes) string { return a.Event }},
+	{"event_name", func(a *attributes) string { return a.EventName }},
+	{"magnitude_type", func(a *attributes) string { return a.MagnitudeType }},
+	{"station", func(a *attributes) string { return a.Station }},
+	{"network", func(a *attributes) string { return a.Network }},
+	{"station_name", func(a *attributes) string { return a.StationName }},
+	{"siting", func(a *attributes) string { return a.Siting }},
+	{"site_class_en1998", func(a *attributes) string { return a.SiteClassEN1998 }},
+	{"site_class_nehrp", func(a *attributes) string { return a.SiteClassNEHRP }},
+	{"instrument", func(a *attributes) string { return a.Instrument }},
+	{"component", func(a *attributes) string { return a.Component }},
+	{"axis", func(a *attributes) string { return a.Axis }},
+	{"format", func(a *attributes) string { return a.Format }},
+	{"processing", func(a *attributes) string { return a.Processing }},
+	{"source", func(a *attributes) string { return a.Source }},
+	{"warnings", func(a *attributes) string { return a.Warnings }},
 }
 
 // attributeDetails says what has to be read of components for an attribute;
@@ -135,15 +161,11 @@ var attributeDetails = map[string]db.Details{
 
 // WhereAttributes lists every attribute that an expression may use, for people.
 func WhereAttributes() string {
-	names := make([]string, len(numbers))
-	for i, n := range numbers {
-		names[i] = n.name
-	}
 	findings := make([]string, len(flags))
 	for i, f := range flags {
 		findings[i] = "quality." + f.name
 	}
-	return "numbers " + strings.Join(names, ", ") + "; strings " + strings.Join(texts, ", ") + "; true or false " + strings.Join(findings, ", ")
+	return "numbers " + numberNames() + "; strings " + textNames() + "; true or false " + strings.Join(findings, ", ")
 }
 
 func isKnown(x float64) bool { return !math.IsNaN(x) }

@@ -1,6 +1,8 @@
 package query
 
 import (
+	"math"
+	"reflect"
 	"testing"
 
 	"swaybook/db"
@@ -29,5 +31,37 @@ func TestSiteClasses(t *testing.T) {
 		if en1998 != k.en1998 || nehrp != k.nehrp {
 			t.Errorf("%q at %v: %q, %q, want %q, %q", k.stated, orNaN(k.vs30), en1998, nehrp, k.en1998, k.nehrp)
 		}
+	}
+}
+
+// Each name in the lists gives the field of that name.
+func TestAttributesByName(t *testing.T) {
+	var a attributes
+	v := reflect.ValueOf(&a).Elem()
+	at := map[string]int{}
+	for i, f := range reflect.VisibleFields(v.Type()) {
+		at[f.Tag.Get("expr")] = i
+		switch f.Type.Kind() {
+		case reflect.Float64:
+			v.Field(i).SetFloat(float64(i))
+		case reflect.Int:
+			v.Field(i).SetInt(int64(i))
+		case reflect.String:
+			v.Field(i).SetString(f.Tag.Get("expr"))
+		}
+	}
+	for _, n := range numbers {
+		if got := n.of(&a); got != float64(at[n.name]) {
+			t.Errorf("%s gives field %v, want %d", n.name, got, at[n.name])
+		}
+	}
+	for _, n := range texts {
+		if got := n.of(&a); got != n.name {
+			t.Errorf("%s gives the field of %s", n.name, got)
+		}
+	}
+	a.Year = noYear
+	if !math.IsNaN(yearOf(&a)) {
+		t.Error("no year is a year")
 	}
 }

@@ -1,6 +1,7 @@
 package query
 
 import (
+	"cmp"
 	"context"
 	"math"
 	"math/big"
@@ -14,6 +15,7 @@ type DemandQuestion struct {
 	Selection             // component: ComponentRotD50, siting: SitingGround by default
 	Structure   Structure // see ParseStructure
 	BandWidth   float64   // ratio: the envelope over T·(1±BandWidth) too; 0: none
+	By          Grouping  // the zero Grouping for none
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
 	Method      Method    // anything but the default is computed from samples
 }
@@ -39,6 +41,15 @@ type DemandAnswer struct {
 	Percentiles []float64
 	Quantities  []Quantity
 	Band        *DemandBand // nil where none was asked for
+	By          Grouping
+	Groups      []DemandGroup // nil where none were asked for
+}
+
+// DemandGroup is the statistics of one part of the selection.
+type DemandGroup struct {
+	Group
+	Quantities []Quantity
+	Band       *DemandBand
 }
 
 // demandQuantities gives each quantity of a structure from an SD in m at ω in
@@ -98,7 +109,7 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 	if q.Percentiles, err = checkPercentiles(q.Percentiles); err != nil {
 		return q, err
 	}
-	if err := checkBandWidth(q.BandWidth); err != nil {
+	if err := cmp.Or(checkBandWidth(q.BandWidth), q.By.validate()); err != nil {
 		return q, err
 	}
 	return q, q.Structure.validate()
@@ -107,7 +118,7 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*DemandAnswer, error) {
 	s := source{snapshot: snapshot, damping: q.Structure.Damping, method: q.Method}
 	band := q.bandPeriods(snapshot.Generation.Grid.PeriodsS)
-	picked, err := pick(ctx, snapshot, q.Selection, s.details(band))
+	picked, err := pick(ctx, snapshot, q.Selection, s.details(band)|q.By.details())
 	if err != nil {
 		return nil, err
 	}
@@ -117,13 +128,25 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
-	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles}
-	r := newReducer(picked.motions, q.Percentiles)
-	answer.Quantities = q.reduce(r, loaded, at, at+1)
-	if q.BandWidth > 0 {
-		answer.Band = &DemandBand{FromS: band[0], ToS: band[len(band)-1], Quantities: q.reduce(r, loaded, 0, len(band))}
+	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By}
+	answer.Quantities, answer.Band = q.reduceBoth(wholeSample(picked.motions), loaded, at)
+	for _, g := range q.By.part(picked.motions) {
+		quantities, overBand := q.reduceBoth(sample{picked.motions, g.motions}, loaded, at)
+		answer.Groups = append(answer.Groups, DemandGroup{g, quantities, overBand})
 	}
 	return answer, nil
+}
+
+// reduceBoth reduces a sample at the structure's period, that of position at, and over the
+// band.
+func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int) ([]Quantity, *DemandBand) {
+	r := newReducer(s, q.Percentiles)
+	quantities := q.reduce(r, o, at, at+1)
+	if q.BandWidth == 0 {
+		return quantities, nil
+	}
+	last := len(o.periodsS) - 1
+	return quantities, &DemandBand{FromS: o.periodsS[0], ToS: o.periodsS[last], Quantities: q.reduce(r, o, 0, last+1)}
 }
 
 // bandPeriods returns the structure's period and, where there is a band, its
@@ -165,13 +188,13 @@ func decimal(x float64) *big.Rat {
 // reduces these, quantity by quantity.
 func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantity {
 	out := make([]Quantity, len(demandQuantities))
-	values := make([]float64, o.motions)
+	values := make([]float64, len(r.at))
 	for i, quantity := range demandQuantities {
 		out[i].Name = quantity.name
 		for p := from; p < to; p++ {
-			w := omega(o.periodsS[p])
-			for k, sd := range o.at(p) {
-				x := quantity.of(&q.Structure, sd, w)
+			w, sd := omega(o.periodsS[p]), o.at(p)
+			for k, at := range r.at {
+				x := quantity.of(&q.Structure, sd[at], w)
 				if p == from || x > values[k] || math.IsNaN(x) {
 					values[k] = x // what is unusable at one period has no envelope
 				}

@@ -197,8 +197,8 @@ func TestDemandMistakes(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	err = a.Write(nil, FormatCSV, UnitsSI)
-	checkUsage(t, "csv", err, `format: unknown format "csv"; accepted here: table, json`)
+	err = a.Write(nil, "xml", UnitsSI)
+	checkUsage(t, "xml", err, `format: unknown format "xml"; accepted here: table, csv, json`)
 }
 
 // TestDemandAgreesWithSpectrum: on the grid a demand and a spectrum are the

@@ -69,17 +69,28 @@ func checkBandWidth(width float64) error {
 // repeated one counts once.
 func ParsePercentiles(text string) ([]float64, error) {
 	list, err := parseList(text, func(item string) (float64, error) {
-		x, rest, err := splitNumber("percentiles", item)
+		p, err := parsePlain("percentiles")(item)
+		if err != nil {
+			return 0, err
+		}
+		return p, checkPercentile(p)
+	})
+	return uniqueInOrder(list), err
+}
+
+// parsePlain reads a number without a unit.
+func parsePlain(what string) func(string) (float64, error) {
+	return func(text string) (float64, error) {
+		x, rest, err := splitNumber(what, text)
 		if err != nil {
 			return 0, err
 		}
 		if strings.TrimSpace(rest) != "" {
-			return 0, usage("percentiles", "%q is not a plain number", item)
+			return 0, usage(what, "%q is not a plain number", text)
 		}
-		p, _ := x.Float64()
-		return p, checkPercentile(p)
-	})
-	return uniqueInOrder(list), err
+		plain, _ := x.Float64()
+		return plain, nil
+	}
 }
 
 func checkPercentile(p float64) error {

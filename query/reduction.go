@@ -30,24 +30,33 @@ type Reduction struct {
 // a normal distribution, rounded.
 func DefaultPercentiles() []float64 { return []float64{16, 50, 84} }
 
+// sample is the motions that a reduction is over, by position.
+type sample struct {
+	motions []motion
+	at      []int
+}
+
+// wholeSample is all motions.
+func wholeSample(motions []motion) sample { return sample{motions, upTo(len(motions))} }
+
 // reducer reduces samples one after another in the same space. It is for one
 // goroutine.
 type reducer struct {
-	motions                []motion
+	sample
 	percents               []float64
 	known, sorted, scratch []float64
 }
 
-func newReducer(motions []motion, percents []float64) *reducer {
-	n := len(motions)
-	return &reducer{motions: motions, percents: percents, known: make([]float64, 0, n), sorted: make([]float64, n), scratch: make([]float64, n)}
+func newReducer(s sample, percents []float64) *reducer {
+	n := len(s.at)
+	return &reducer{sample: s, percents: percents, known: make([]float64, 0, n), sorted: make([]float64, n), scratch: make([]float64, n)}
 }
 
 // leastForPercentiles is the number of spectra below which a percentile is not defined:
 // of one or two it would be an opinion about how distributions look.
 const leastForPercentiles = 3
 
-// reduce takes one value a motion, in the order of motions, NaN for those that have none.
+// reduce takes one value a motion of the sample, in its order, NaN for those that have none.
 // Sums are of the sorted values, so that they are the same in every digit whatever the
 // order in which the files were read.
 func (r *reducer) reduce(values []float64) Reduction {
@@ -71,23 +80,23 @@ func (r *reducer) reduce(values []float64) Reduction {
 	}
 	out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
 	if governing := slices.Index(values, out.Max); governing >= 0 {
-		m := &r.motions[governing]
+		m := &r.motions[r.at[governing]]
 		out.Governing, out.GoverningComponent = m.record(), m.role
 	}
 	return out
 }
 
 // reduceAll reduces a measure at every period, from several goroutines.
-func reduceAll(ctx context.Context, o *ordinates, motions []motion, measure Measure, percents []float64) ([]Reduction, error) {
+func reduceAll(ctx context.Context, o *ordinates, s sample, measure Measure, percents []float64) ([]Reduction, error) {
 	out := make([]Reduction, len(o.periodsS))
 	workers := min(runtime.GOMAXPROCS(0), len(out))
 	err := inParallel(ctx, workers, func(ctx context.Context, first int) error {
-		r := newReducer(motions, percents)
-		values := make([]float64, len(motions))
+		r := newReducer(s, percents)
+		values := make([]float64, len(s.at))
 		for p := first; p < len(out) && ctx.Err() == nil; p += workers {
-			omega := omega(o.periodsS[p])
-			for i, sd := range o.at(p) {
-				values[i] = measure.of(sd, omega)
+			omega, sd := omega(o.periodsS[p]), o.at(p)
+			for k, i := range s.at {
+				values[k] = measure.of(sd[i], omega)
 			}
 			out[p] = r.reduce(values)
 		}

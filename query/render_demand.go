@@ -5,7 +5,7 @@ import (
 	"io"
 )
 
-// Write renders the answer as a table or as JSON, which is in SI whatever the
+// Write renders the answer as a table, or as CSV or JSON, which are in SI whatever the
 // units. The error is a UsageError for another format and otherwise one of w.
 func (a *DemandAnswer) Write(w io.Writer, format Format, units Units) error {
 	var text []byte
@@ -13,10 +13,12 @@ func (a *DemandAnswer) Write(w io.Writer, format Format, units Units) error {
 	switch format {
 	case FormatTable, "":
 		text = a.table(units)
+	case FormatCSV:
+		text = a.csv()
 	case FormatJSON:
 		text, err = jsonText(a.object())
 	default:
-		_, err = ParseFormat(string(format), FormatTable, FormatJSON)
+		_, err = ParseFormat(string(format))
 	}
 	if err != nil {
 		return err
@@ -46,31 +48,95 @@ var quantityUnits = map[string]quantityUnit{
 
 func (a *DemandAnswer) table(units Units) []byte {
 	text := fmt.Appendf(nil, "Demand on a structure of %s\n%s\n%s\n", a.Structure.text(units), a.Selection.heading(), a.Selection.methodLine())
-	text = a.quantitiesTable(text, a.Quantities, units)
+	text = a.quantitiesTable(text, false, units)
 	if a.Band != nil {
 		text = fmt.Appendf(text, "\nLargest of every motion over periods from %s s to %s s\n\n", figure(a.Band.FromS), figure(a.Band.ToS))
-		text = a.quantitiesTable(text, a.Band.Quantities, units)
+		text = a.quantitiesTable(text, true, units)
 	}
 	return append(append(text, '\n'), a.Remarks()...)
 }
 
-func (a *DemandAnswer) quantitiesTable(dst []byte, quantities []Quantity, units Units) []byte {
+func (a *DemandAnswer) isGrouped() bool { return a.By.Attribute != "" }
+
+// eachRow yields the statistics of every quantity that there is, of all motions and of
+// every group, at the period or over the band.
+func (a *DemandAnswer) eachRow(overBand bool, row func(quantity, group string, r *Reduction)) {
+	of := func(quantities []Quantity, band *DemandBand, i int) *Reduction {
+		if overBand {
+			quantities = band.Quantities
+		}
+		return quantities[i].Reduction
+	}
+	for i := range a.Quantities {
+		name := a.Quantities[i].Name
+		if r := of(a.Quantities, a.Band, i); r != nil {
+			row(name, wholeGroup, r)
+		}
+		for _, g := range a.Groups {
+			if r := of(g.Quantities, g.Band, i); r != nil {
+				row(name, g.Label, r)
+			}
+		}
+	}
+}
+
+func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) []byte {
 	t := table{columns: []column{{name: "quantity", isWord: true}, {name: "unit", isWord: true}}}
+	if a.isGrouped() {
+		t.columns = append(t.columns, column{name: "group", isWord: true}, column{name: "count"})
+	}
 	t.columns = append(t.columns, reductionColumns(a.Percentiles, "")...)
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
-	for _, q := range quantities {
-		if q.Reduction == nil {
-			continue
-		}
-		u := quantityUnits[q.Name]
+	a.eachRow(overBand, func(quantity, group string, r *Reduction) {
+		u := quantityUnits[quantity]
 		name, per := u.si, u.perSI
 		if units == UnitsUS {
 			name, per = u.us, u.perUS
 		}
-		cells := append([]string{u.title, name}, reductionCells(q.Reduction.scaled(per))...)
-		t.add(append(cells, a.Selection.governingText(q.Reduction))...)
-	}
+		cells := []string{u.title, name}
+		if a.isGrouped() {
+			cells = append(cells, group, fmt.Sprint(r.Count))
+		}
+		cells = append(cells, reductionCells(r.scaled(per))...)
+		t.add(append(cells, a.Selection.governingText(r))...)
+	})
 	return t.appendTo(dst)
+}
+
+// csv has a row a quantity, and over the band another; the periods say which is which.
+func (a *DemandAnswer) csv() []byte {
+	var l csvLine
+	l.words("quantity", "from_s", "to_s")
+	if a.isGrouped() {
+		l.word("group")
+	}
+	l.words("count", "mean", "log_mean", "log_std_ln")
+	for _, p := range a.Percentiles {
+		l.word("p" + percentKey(p))
+	}
+	l.words("min", "max", "governing")
+	if a.Selection.hasRoles() {
+		l.word("governing_component")
+	}
+	l.end()
+	a.csvRows(&l, false, a.Structure.PeriodS, a.Structure.PeriodS)
+	if a.Band != nil {
+		a.csvRows(&l, true, a.Band.FromS, a.Band.ToS)
+	}
+	return l.text
+}
+
+func (a *DemandAnswer) csvRows(l *csvLine, overBand bool, fromS, toS float64) {
+	a.eachRow(overBand, func(quantity, group string, r *Reduction) {
+		l.word(quantity)
+		l.number(fromS)
+		l.number(toS)
+		if a.isGrouped() {
+			l.word(group)
+		}
+		a.Selection.csvCells(l, *r)
+		l.end()
+	})
 }
 
 // text describes the structure. The weight of a pound-force is that of the mass
@@ -102,17 +168,26 @@ func (a *DemandAnswer) object() object {
 			{"mass_kg", orNaN(s.MassKG)}, {"height_m", orNaN(s.HeightM)},
 		}},
 		{"selection", a.Selection.object()},
-		{"quantities", a.quantitiesObject(a.Quantities)},
 	}
-	if a.Band == nil {
-		o = append(o, field{"band", nil})
-	} else {
-		o = append(o, field{"band", object{
-			{"from_s", a.Band.FromS}, {"to_s", a.Band.ToS},
-			{"quantities", a.quantitiesObject(a.Band.Quantities)},
-		}})
+	o = append(o, a.demandFields(a.Quantities, a.Band)...)
+	if a.isGrouped() {
+		groups := make([]object, len(a.Groups))
+		for i := range a.Groups {
+			g := &a.Groups[i]
+			groups[i] = append(g.object(), a.demandFields(g.Quantities, g.Band)...)
+		}
+		o = append(o, field{"by", a.By.Attribute}, field{"groups", groups})
 	}
 	return append(o, field{"caution", Caution})
+}
+
+// demandFields are the quantities at the period and, where there is one, over the band.
+func (a *DemandAnswer) demandFields(quantities []Quantity, band *DemandBand) object {
+	o := object{{"quantities", a.quantitiesObject(quantities)}, {"band", nil}}
+	if band != nil {
+		o[1].value = object{{"from_s", band.FromS}, {"to_s", band.ToS}, {"quantities", a.quantitiesObject(band.Quantities)}}
+	}
+	return o
 }
 
 func (a *DemandAnswer) quantitiesObject(quantities []Quantity) object {
@@ -129,7 +204,7 @@ func (a *DemandAnswer) quantitiesObject(quantities []Quantity) object {
 
 func (a *DemandAnswer) reductionObject(r *Reduction) object {
 	o := object{
-		{"mean", r.Mean}, {"log_mean", r.LogMean}, {"log_std", r.LogStd},
+		{"count", r.Count}, {"mean", r.Mean}, {"log_mean", r.LogMean}, {"log_std", r.LogStd},
 		{"percentiles", percentilesObject(a.Percentiles, func(i int) float64 { return r.Percentiles[i] })},
 		{"min", r.Min}, {"max", r.Max}, {"governing", r.Governing},
 	}

@@ -75,14 +75,21 @@ func (r *SelectionReport) hasRoles() bool { return r.Component == ComponentEach 
 
 func (a *SpectrumAnswer) table(units Units) []byte {
 	unit, _, per := a.Measure.unitOf(units)
-	t := table{columns: []column{{name: "period", unit: "s"}, {name: "count"}}}
+	t := table{columns: []column{{name: "period", unit: "s"}}}
+	if a.isGrouped() {
+		t.columns = append(t.columns, column{name: "group", isWord: true})
+	}
+	t.columns = append(t.columns, column{name: "count"})
 	t.columns = append(t.columns, reductionColumns(a.Percentiles, unit)...)
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
-	for i, r := range a.Reductions {
-		cells := []string{figure(a.PeriodsS[i]), fmt.Sprint(r.Count)}
-		cells = append(cells, reductionCells(r.scaled(per))...)
-		t.add(append(cells, a.Selection.governingText(&r))...)
-	}
+	a.eachRow(func(p int, group string, r *Reduction) {
+		cells := []string{figure(a.PeriodsS[p])}
+		if a.isGrouped() {
+			cells = append(cells, group)
+		}
+		cells = append(append(cells, fmt.Sprint(r.Count)), reductionCells(r.scaled(per))...)
+		t.add(append(cells, a.Selection.governingText(r))...)
+	})
 	in := " in " + unit
 	if a.Measure == MeasureVH {
 		in = "" // a number
@@ -91,6 +98,22 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 		a.Selection.heading(), a.Selection.methodLine())
 	text = t.appendTo(text)
 	return append(append(text, '\n'), a.Remarks()...)
+}
+
+// wholeGroup is the label of all groups together.
+const wholeGroup = "all"
+
+func (a *SpectrumAnswer) isGrouped() bool { return a.By.Attribute != "" }
+
+// eachRow yields at every period, by position, the statistics of all motions and those of
+// every group.
+func (a *SpectrumAnswer) eachRow(row func(p int, group string, r *Reduction)) {
+	for p := range a.PeriodsS {
+		row(p, wholeGroup, &a.Reductions[p])
+		for i := range a.Groups {
+			row(p, a.Groups[i].Label, &a.Groups[i].Reductions[p])
+		}
+	}
 }
 
 // methodLine names the recipe and the screen, and a method that is not the store's, in a
@@ -132,7 +155,11 @@ func (a *SpectrumAnswer) csv(units Units) []byte {
 	_, suffix, per := a.Measure.unitOf(units)
 	suffix = "_" + string(a.Measure) + "_" + suffix
 	var l csvLine
-	l.words("period_s", "count", "mean"+suffix, "log_mean"+suffix, "log_std_ln")
+	l.word("period_s")
+	if a.isGrouped() {
+		l.word("group")
+	}
+	l.words("count", "mean"+suffix, "log_mean"+suffix, "log_std_ln")
 	for _, p := range a.Percentiles {
 		l.word("p" + percentKey(p) + suffix)
 	}
@@ -141,43 +168,67 @@ func (a *SpectrumAnswer) csv(units Units) []byte {
 		l.word("governing_component")
 	}
 	l.end()
-	for i, r := range a.Reductions {
-		a.csvRow(&l, a.PeriodsS[i], r.scaled(per))
-	}
+	a.eachRow(func(p int, group string, r *Reduction) {
+		l.number(a.PeriodsS[p])
+		if a.isGrouped() {
+			l.word(group)
+		}
+		a.Selection.csvCells(&l, r.scaled(per))
+		l.end()
+	})
 	return l.text
 }
 
-func (a *SpectrumAnswer) csvRow(l *csvLine, periodS float64, r Reduction) {
-	l.number(periodS)
-	l.integer(r.Count)
-	l.number(r.Mean)
-	l.number(r.LogMean)
-	l.number(r.LogStd)
-	for _, p := range r.Percentiles {
+// csvCells are those of a reduction, from its count to what governs.
+func (r *SelectionReport) csvCells(l *csvLine, x Reduction) {
+	l.integer(x.Count)
+	l.number(x.Mean)
+	l.number(x.LogMean)
+	l.number(x.LogStd)
+	for _, p := range x.Percentiles {
 		l.number(p)
 	}
-	l.number(r.Min)
-	l.number(r.Max)
-	l.word(r.Governing)
-	if a.Selection.hasRoles() {
-		l.word(r.GoverningComponent)
+	l.number(x.Min)
+	l.number(x.Max)
+	l.word(x.Governing)
+	if r.hasRoles() {
+		l.word(x.GoverningComponent)
 	}
-	l.end()
 }
 
 func (a *SpectrumAnswer) object(units Units) object {
 	unit, _, per := a.Measure.unitOf(units)
-	scaled := make([]Reduction, len(a.Reductions))
-	for i, r := range a.Reductions {
-		scaled[i] = r.scaled(per)
-	}
-	floats := func(of func(r *Reduction) float64) []float64 { return collect(scaled, of) }
 	o := object{
 		{"selection", a.Selection.object()},
 		{"damping", a.Damping},
 		{"measure", string(a.Measure)},
 		{"unit", unit},
 		{"periods_s", a.PeriodsS},
+	}
+	o = append(o, a.statistics(a.Reductions, per)...)
+	if a.isGrouped() {
+		groups := make([]object, len(a.Groups))
+		for i := range a.Groups {
+			groups[i] = append(a.Groups[i].object(), a.statistics(a.Groups[i].Reductions, per)...)
+		}
+		o = append(o, field{"by", a.By.Attribute}, field{"groups", groups})
+	}
+	return append(o, field{"caution", Caution})
+}
+
+// object describes the group.
+func (g *Group) object() object {
+	return object{{"group", g.Label}, {"records", g.Records}, {"spectra", g.Spectra}, {"events", g.Events}}
+}
+
+// statistics are arrays by period, in a unit of which one is `per` of the present.
+func (a *SpectrumAnswer) statistics(reductions []Reduction, per float64) object {
+	scaled := make([]Reduction, len(reductions))
+	for i, r := range reductions {
+		scaled[i] = r.scaled(per)
+	}
+	floats := func(of func(r *Reduction) float64) []float64 { return collect(scaled, of) }
+	o := object{
 		{"count", collect(scaled, func(r *Reduction) int { return r.Count })},
 		{"mean", floats(func(r *Reduction) float64 { return r.Mean })},
 		{"log_mean", floats(func(r *Reduction) float64 { return r.LogMean })},
@@ -192,7 +243,7 @@ func (a *SpectrumAnswer) object(units Units) object {
 	if a.Selection.hasRoles() {
 		o = append(o, field{"governing_component", collect(scaled, func(r *Reduction) string { return r.GoverningComponent })})
 	}
-	return append(o, field{"caution", Caution})
+	return o
 }
 
 func collect[T any](rs []Reduction, of func(r *Reduction) T) []T {

@@ -1,6 +1,7 @@
 package query
 
 import (
+	"cmp"
 	"context"
 	"math"
 	"slices"
@@ -18,6 +19,7 @@ type SpectrumQuestion struct {
 	Damping     float64   // ratio
 	Measure     Measure   // MeasurePSA by default
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
+	By          Grouping  // the zero Grouping for none
 	Band        Band      // grid periods taken; not with PeriodsS
 	PeriodsS    []float64 // nil: those of the grid in Band
 	Method      Method    // anything but the default is computed from samples
@@ -32,6 +34,14 @@ type SpectrumAnswer struct {
 	Percentiles []float64
 	PeriodsS    []float64 // ascending
 	Reductions  []Reduction
+	By          Grouping
+	Groups      []SpectrumGroup // nil where none were asked for
+}
+
+// SpectrumGroup is the statistics of one part of the selection.
+type SpectrumGroup struct {
+	Group
+	Reductions []Reduction
 }
 
 // Ask answers the question from one snapshot of the store. The error is a
@@ -70,7 +80,7 @@ func (q SpectrumQuestion) withDefaults() (SpectrumQuestion, error) {
 	if q.Percentiles, err = checkPercentiles(q.Percentiles); err != nil {
 		return q, err
 	}
-	if err := q.Band.validate(); err != nil {
+	if err := cmp.Or(q.Band.validate(), q.By.validate()); err != nil {
 		return q, err
 	}
 	return q, checkOscillators(q.PeriodsS, []float64{q.Damping})
@@ -108,7 +118,7 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		return nil, err
 	}
 	s := source{snapshot: snapshot, damping: q.Damping, method: q.Method}
-	picked, err := pick(ctx, snapshot, q.Selection, s.details(periods))
+	picked, err := pick(ctx, snapshot, q.Selection, s.details(periods)|q.By.details())
 	if err != nil {
 		return nil, err
 	}
@@ -121,15 +131,22 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 			return nil, err
 		}
 	}
-	reductions, err := reduceAll(ctx, loaded, picked.motions, q.Measure, q.Percentiles)
-	if err != nil {
+	picked.report.noteMethod(q.Method)
+	answer := &SpectrumAnswer{
+		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
+		PeriodsS: periods, By: q.By,
+	}
+	if answer.Reductions, err = reduceAll(ctx, loaded, wholeSample(picked.motions), q.Measure, q.Percentiles); err != nil {
 		return nil, err
 	}
-	picked.report.noteMethod(q.Method)
-	return &SpectrumAnswer{
-		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
-		PeriodsS: periods, Reductions: reductions,
-	}, nil
+	for _, g := range q.By.part(picked.motions) {
+		reductions, err := reduceAll(ctx, loaded, sample{picked.motions, g.motions}, q.Measure, q.Percentiles)
+		if err != nil {
+			return nil, err
+		}
+		answer.Groups = append(answer.Groups, SpectrumGroup{g, reductions})
+	}
+	return answer, nil
 }
 
 func (q SpectrumQuestion) periods(snapshot *db.Snapshot) ([]float64, error) {

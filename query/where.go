@@ -115,7 +115,7 @@ func (w *where) unknown(a *attributes) string {
 	peak := ""
 	for _, i := range w.used {
 		switch name := numbers[i].name; {
-		case numbers[i].known(a):
+		case isKnown(numbers[i].of(a)):
 		case !isPeak(name):
 			return name
 		case peak == "":

@@ -183,7 +183,7 @@ func TestAttributeTables(t *testing.T) {
 		listed[n.name] = "number"
 	}
 	for _, s := range texts {
-		listed[s] = "string"
+		listed[s.name] = "string"
 	}
 	fields := reflect.TypeFor[attributes]()
 	if fields.NumMethod() > 0 || reflect.PointerTo(fields).NumMethod() > 0 {

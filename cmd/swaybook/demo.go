@@ -194,5 +194,5 @@ func demoDemand(ctx context.Context, store *db.Store, s demo.Structure, where st
 	return runDemand(ctx, store, demandOptions{
 		question: query.DemandQuestion{Selection: query.Selection{Where: where}, Structure: structure},
 		format:   query.FormatTable, units: query.UnitsSI,
-	}, w)
+	}, w, io.Discard)
 }

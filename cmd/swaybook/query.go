@@ -44,6 +44,7 @@ func statisticsFlags() []cli.Flag {
 		&cli.BoolFlag{Name: "include-unknown-directions", DisableDefaultText: true, Usage: "take components too of which nothing says whether they are horizontal"},
 		&cli.BoolFlag{Name: "ignore-usable-band", DisableDefaultText: true, Usage: "count ordinates too at periods at which filters and sampling leave nothing to believe"},
 		&cli.StringFlag{Name: "screen", Value: "normal", Usage: "leave out for what was found of quality: strict, normal or none"},
+		&cli.StringFlag{Name: "by", Usage: "the same statistics group by group too: an `ATTRIBUTE` such as event, station or site_class_en1998, or a number with edges of bins, magnitude:5,6,7"},
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
 		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
 		&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
@@ -113,6 +114,7 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 	return o, errors.Join(err, noArguments(c),
 		parseInto(&q.Damping, c, "damping", query.ParseDamping),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
+		parseInto(&q.By, c, "by", query.ParseGrouping),
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&q.Measure, c, "measure", query.ParseMeasure),
 		parseInto(&q.Band, c, "band", query.ParseBand),
@@ -152,7 +154,7 @@ func queryDemandCommand() *cli.Command {
 			&cli.StringFlag{Name: "mass", Usage: "mass, such as 52000kg or 52t"},
 			&cli.StringFlag{Name: "height", Usage: "height of the mass above the base, such as 6m or 20ft"},
 			&cli.StringFlag{Name: "band", Usage: "show the envelope over T·(1±BAND) too, such as 10%"},
-			formatFlag("table or json"),
+			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
 			o, err := newDemandOptions(c)
@@ -160,7 +162,7 @@ func queryDemandCommand() *cli.Command {
 				return err
 			}
 			return withStore(c, func(ctx context.Context, store *db.Store) error {
-				return runDemand(ctx, store, o, c.App.Writer)
+				return runDemand(ctx, store, o, c.App.Writer, c.App.ErrWriter)
 			})
 		},
 	}
@@ -184,19 +186,21 @@ func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
 	})
 	return o, errors.Join(err, noArguments(c),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
+		parseInto(&q.By, c, "by", query.ParseGrouping),
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&q.BandWidth, c, "band", query.ParseBandWidth),
 		parseInto(&o.units, c, "units", query.ParseUnits),
-		parseInto(&o.format, c, "format", func(s string) (query.Format, error) {
-			return query.ParseFormat(s, query.FormatTable, query.FormatJSON)
-		}),
+		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
 	)
 }
 
-func runDemand(ctx context.Context, store *db.Store, o demandOptions, w io.Writer) error {
+func runDemand(ctx context.Context, store *db.Store, o demandOptions, w, stderr io.Writer) error {
 	answer, err := o.question.Ask(ctx, store)
 	if err != nil {
 		return err
+	}
+	if o.format == query.FormatCSV {
+		fmt.Fprint(stderr, answer.Remarks())
 	}
 	return answer.Write(w, o.format, o.units)
 }
