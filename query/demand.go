@@ -129,9 +129,10 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 	}
 	picked.report.noteMethod(q.Method)
 	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By}
-	answer.Quantities, answer.Band = q.reduceBoth(wholeSample(picked.motions), loaded, at)
+	whole := picked.sample()
+	answer.Quantities, answer.Band = q.reduceBoth(whole, loaded, at)
 	for _, g := range q.By.part(picked.motions) {
-		quantities, overBand := q.reduceBoth(sample{picked.motions, g.motions}, loaded, at)
+		quantities, overBand := q.reduceBoth(whole.of(&g), loaded, at)
 		answer.Groups = append(answer.Groups, DemandGroup{g, quantities, overBand})
 	}
 	return answer, nil

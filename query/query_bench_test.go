@@ -124,7 +124,7 @@ func BenchmarkReduce(b *testing.B) {
 		o.sd[i] = rng.ExpFloat64()
 	}
 	for b.Loop() {
-		if _, err := reduceAll(b.Context(), o, wholeSample(motions), MeasurePSA, DefaultPercentiles()); err != nil {
+		if _, err := reduceAll(b.Context(), o, sample{motions: motions, at: upTo(len(motions))}, MeasurePSA, DefaultPercentiles()); err != nil {
 			b.Fatal(err)
 		}
 	}

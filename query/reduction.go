@@ -11,10 +11,12 @@ import (
 
 // Reduction is the statistics of one quantity over the motions of a selection,
 // in the quantity's unit; LogStd has none. Motions whose usable band does not reach the
-// period do not count. What is undefined is NaN: everything of no motion, percentiles of
-// fewer than three, LogStd of one, LogMean and LogStd where a value is zero.
+// period do not count. Where motions are balanced, all but Count, Min and Max are weighted.
+// What is undefined is NaN: everything of no motion, percentiles that the sample does not
+// support (stats.Supports), LogStd of one, LogMean and LogStd where a value is zero.
 type Reduction struct {
 	Count       int
+	Effective   float64 // number of equally weighted motions that say as much; Count where none are balanced
 	Mean        float64
 	LogMean     float64   // geometric mean
 	LogStd      float64   // standard deviation of ln, divisor Count-1
@@ -32,34 +34,63 @@ func DefaultPercentiles() []float64 { return []float64{16, 50, 84} }
 
 // sample is the motions that a reduction is over, by position.
 type sample struct {
-	motions []motion
-	at      []int
+	motions  []motion
+	clusters []int // what is balanced, by position in motions; nil: nothing
+	at       []int
 }
 
-// wholeSample is all motions.
-func wholeSample(motions []motion) sample { return sample{motions, upTo(len(motions))} }
+// sample is all motions.
+func (p *picked) sample() sample {
+	return sample{p.motions, p.report.Balance.clusters(p.motions), upTo(len(p.motions))}
+}
+
+// of is the sample's motions of a group of them all.
+func (s sample) of(g *Group) sample {
+	s.at = g.motions
+	return s
+}
 
 // reducer reduces samples one after another in the same space. It is for one
 // goroutine.
 type reducer struct {
 	sample
-	percents               []float64
-	known, sorted, scratch []float64
+	percents                        []float64
+	known, weights, sorted, scratch []float64
 }
 
 func newReducer(s sample, percents []float64) *reducer {
 	n := len(s.at)
-	return &reducer{sample: s, percents: percents, known: make([]float64, 0, n), sorted: make([]float64, n), scratch: make([]float64, n)}
+	r := &reducer{sample: s, percents: percents, known: make([]float64, 0, n), sorted: make([]float64, n), scratch: make([]float64, n)}
+	if s.clusters != nil {
+		r.weights = make([]float64, n)
+	}
+	return r
 }
-
-// leastForPercentiles is the number of spectra below which a percentile is not defined:
-// of one or two it would be an opinion about how distributions look.
-const leastForPercentiles = 3
 
 // reduce takes one value a motion of the sample, in its order, NaN for those that have none.
 // Sums are of the sorted values, so that they are the same in every digit whatever the
 // order in which the files were read.
 func (r *reducer) reduce(values []float64) Reduction {
+	nan := math.NaN()
+	out := Reduction{Mean: nan, LogMean: nan, LogStd: nan, Min: nan, Max: nan}
+	if r.clusters != nil {
+		r.reduceWeighted(&out, values)
+	} else {
+		r.reduceEqual(&out, values)
+	}
+	for i, percent := range r.percents {
+		if !stats.Supports(out.Effective, percent) {
+			out.Percentiles[i] = nan
+		}
+	}
+	if governing := slices.Index(values, out.Max); governing >= 0 {
+		m := &r.motions[r.at[governing]]
+		out.Governing, out.GoverningComponent = m.record(), m.role
+	}
+	return out
+}
+
+func (r *reducer) reduceEqual(out *Reduction, values []float64) {
 	known := r.known[:0]
 	for _, x := range values {
 		if !math.IsNaN(x) {
@@ -67,23 +98,36 @@ func (r *reducer) reduce(values []float64) Reduction {
 		}
 	}
 	n := len(known)
-	nan := math.NaN()
-	if n == 0 {
-		return Reduction{Mean: nan, LogMean: nan, LogStd: nan, Percentiles: slices.Repeat([]float64{nan}, len(r.percents)), Min: nan, Max: nan}
-	}
+	out.Count, out.Effective = n, float64(n)
 	sorted, scratch := r.sorted[:n], r.scratch[:n]
 	copy(sorted, known)
 	stats.Sort(sorted, scratch)
-	out := Reduction{Count: n, Mean: stats.Mean(sorted), Percentiles: stats.Percentiles(nil, sorted, r.percents), Min: sorted[0], Max: sorted[n-1]}
-	if n < leastForPercentiles {
-		out.Percentiles = slices.Repeat([]float64{nan}, len(r.percents))
+	out.Percentiles = stats.Percentiles(nil, sorted, r.percents)
+	if n > 0 {
+		out.Min, out.Max = sorted[0], sorted[n-1]
+		out.Mean = stats.Mean(sorted)
+		out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
 	}
-	out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
-	if governing := slices.Index(values, out.Max); governing >= 0 {
-		m := &r.motions[r.at[governing]]
-		out.Governing, out.GoverningComponent = m.record(), m.role
+}
+
+func (r *reducer) reduceWeighted(out *Reduction, values []float64) {
+	r.weigh(r.weights, values)
+	sorted, n := r.sorted[:0], 0
+	for k, x := range values {
+		if !math.IsNaN(x) {
+			sorted, r.weights[n] = append(sorted, x), r.weights[k]
+			n++
+		}
 	}
-	return out
+	weights, scratch := r.weights[:n], r.scratch[:n]
+	stats.SortWeighted(sorted, weights)
+	out.Count, out.Effective = n, stats.EffectiveNumber(weights)
+	out.Percentiles = stats.WeightedPercentiles(nil, scratch, sorted, weights, r.percents)
+	if n > 0 {
+		out.Min, out.Max = sorted[0], sorted[n-1]
+		out.Mean = stats.WeightedMean(sorted, weights)
+		out.LogMean, out.LogStd = stats.WeightedLogMoments(scratch, sorted, weights)
+	}
 }
 
 // reduceAll reduces a measure at every period, from several goroutines.

@@ -82,8 +82,12 @@ func (a *DemandAnswer) eachRow(overBand bool, row func(quantity, group string, r
 
 func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) []byte {
 	t := table{columns: []column{{name: "quantity", isWord: true}, {name: "unit", isWord: true}}}
+	hasCounts := a.isGrouped() || !a.Selection.Balance.isNone()
 	if a.isGrouped() {
-		t.columns = append(t.columns, column{name: "group", isWord: true}, column{name: "count"})
+		t.columns = append(t.columns, column{name: "group", isWord: true})
+	}
+	if hasCounts {
+		t.columns = append(t.columns, a.Selection.countColumns()...)
 	}
 	t.columns = append(t.columns, reductionColumns(a.Percentiles, "")...)
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
@@ -95,7 +99,10 @@ func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) [
 		}
 		cells := []string{u.title, name}
 		if a.isGrouped() {
-			cells = append(cells, group, fmt.Sprint(r.Count))
+			cells = append(cells, group)
+		}
+		if hasCounts {
+			cells = append(cells, a.Selection.countCells(r)...)
 		}
 		cells = append(cells, reductionCells(r.scaled(per))...)
 		t.add(append(cells, a.Selection.governingText(r))...)
@@ -110,7 +117,8 @@ func (a *DemandAnswer) csv() []byte {
 	if a.isGrouped() {
 		l.word("group")
 	}
-	l.words("count", "mean", "log_mean", "log_std_ln")
+	l.words(a.Selection.countNames()...)
+	l.words("mean", "log_mean", "log_std_ln")
 	for _, p := range a.Percentiles {
 		l.word("p" + percentKey(p))
 	}
@@ -203,11 +211,15 @@ func (a *DemandAnswer) quantitiesObject(quantities []Quantity) object {
 }
 
 func (a *DemandAnswer) reductionObject(r *Reduction) object {
-	o := object{
-		{"count", r.Count}, {"mean", r.Mean}, {"log_mean", r.LogMean}, {"log_std", r.LogStd},
+	o := object{{"count", r.Count}}
+	if !a.Selection.Balance.isNone() {
+		o = append(o, field{"effective", r.Effective})
+	}
+	o = append(o, object{
+		{"mean", r.Mean}, {"log_mean", r.LogMean}, {"log_std", r.LogStd},
 		{"percentiles", percentilesObject(a.Percentiles, func(i int) float64 { return r.Percentiles[i] })},
 		{"min", r.Min}, {"max", r.Max}, {"governing", r.Governing},
-	}
+	}...)
 	if a.Selection.hasRoles() {
 		o = append(o, field{"governing_component", r.GoverningComponent})
 	}

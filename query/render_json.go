@@ -145,6 +145,9 @@ func (r *SelectionReport) object() object {
 		{"screen", string(r.Screen)},
 	}
 	o = append(o, r.Scope.fields()...)
+	if !r.Balance.isNone() {
+		o = append(o, field{"balance", string(r.Balance)})
+	}
 	if r.Method != defaultMethod {
 		o = append(o, field{"method", r.Method.String()})
 	}

@@ -3,6 +3,8 @@ package query
 import (
 	"fmt"
 	"io"
+	"math"
+	"strconv"
 
 	"swaybook/pipeline/spectrum"
 )
@@ -79,7 +81,7 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 	if a.isGrouped() {
 		t.columns = append(t.columns, column{name: "group", isWord: true})
 	}
-	t.columns = append(t.columns, column{name: "count"})
+	t.columns = append(t.columns, a.Selection.countColumns()...)
 	t.columns = append(t.columns, reductionColumns(a.Percentiles, unit)...)
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
 	a.eachRow(func(p int, group string, r *Reduction) {
@@ -87,7 +89,7 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 		if a.isGrouped() {
 			cells = append(cells, group)
 		}
-		cells = append(append(cells, fmt.Sprint(r.Count)), reductionCells(r.scaled(per))...)
+		cells = append(append(cells, a.Selection.countCells(r)...), reductionCells(r.scaled(per))...)
 		t.add(append(cells, a.Selection.governingText(r))...)
 	})
 	in := " in " + unit
@@ -120,6 +122,9 @@ func (a *SpectrumAnswer) eachRow(row func(p int, group string, r *Reduction)) {
 // line of its own.
 func (r *SelectionReport) methodLine() string {
 	text := "recipe " + r.Recipe + "; screen " + string(r.Screen)
+	if !r.Balance.isNone() {
+		text += "; balance " + string(r.Balance)
+	}
 	if r.Method != defaultMethod {
 		text += "; method " + r.Method.String()
 	}
@@ -143,9 +148,28 @@ func reductionColumns(percents []float64, unit string) []column {
 	return append(columns, column{name: "min", unit: unit}, column{name: "max", unit: unit})
 }
 
+// countColumns are the headings of countCells.
+func (r *SelectionReport) countColumns() []column {
+	if r.Balance.isNone() {
+		return []column{{name: "count"}}
+	}
+	return []column{{name: "count"}, {name: "effective"}}
+}
+
+func (r *SelectionReport) countCells(x *Reduction) []string {
+	if r.Balance.isNone() {
+		return []string{fmt.Sprint(x.Count)}
+	}
+	return []string{fmt.Sprint(x.Count), strconv.FormatFloat(x.Effective, 'f', 1, 64)}
+}
+
 func reductionCells(r Reduction) []string {
 	cells := []string{figure(r.Mean), figure(r.LogMean), figure(r.LogStd)}
 	for _, p := range r.Percentiles {
+		if r.Count > 0 && math.IsNaN(p) {
+			cells = append(cells, "too few")
+			continue
+		}
 		cells = append(cells, figure(p))
 	}
 	return append(cells, figure(r.Min), figure(r.Max))
@@ -159,7 +183,8 @@ func (a *SpectrumAnswer) csv(units Units) []byte {
 	if a.isGrouped() {
 		l.word("group")
 	}
-	l.words("count", "mean"+suffix, "log_mean"+suffix, "log_std_ln")
+	l.words(a.Selection.countNames()...)
+	l.words("mean"+suffix, "log_mean"+suffix, "log_std_ln")
 	for _, p := range a.Percentiles {
 		l.word("p" + percentKey(p) + suffix)
 	}
@@ -179,9 +204,20 @@ func (a *SpectrumAnswer) csv(units Units) []byte {
 	return l.text
 }
 
+// countNames are the columns of what is counted.
+func (r *SelectionReport) countNames() []string {
+	if r.Balance.isNone() {
+		return []string{"count"}
+	}
+	return []string{"count", "effective"}
+}
+
 // csvCells are those of a reduction, from its count to what governs.
 func (r *SelectionReport) csvCells(l *csvLine, x Reduction) {
 	l.integer(x.Count)
+	if !r.Balance.isNone() {
+		l.number(x.Effective)
+	}
 	l.number(x.Mean)
 	l.number(x.LogMean)
 	l.number(x.LogStd)
@@ -228,8 +264,11 @@ func (a *SpectrumAnswer) statistics(reductions []Reduction, per float64) object 
 		scaled[i] = r.scaled(per)
 	}
 	floats := func(of func(r *Reduction) float64) []float64 { return collect(scaled, of) }
-	o := object{
-		{"count", collect(scaled, func(r *Reduction) int { return r.Count })},
+	o := object{{"count", collect(scaled, func(r *Reduction) int { return r.Count })}}
+	if !a.Selection.Balance.isNone() {
+		o = append(o, field{"effective", floats(func(r *Reduction) float64 { return r.Effective })})
+	}
+	o = append(o, object{
 		{"mean", floats(func(r *Reduction) float64 { return r.Mean })},
 		{"log_mean", floats(func(r *Reduction) float64 { return r.LogMean })},
 		{"log_std", floats(func(r *Reduction) float64 { return r.LogStd })},
@@ -239,7 +278,7 @@ func (a *SpectrumAnswer) statistics(reductions []Reduction, per float64) object 
 		{"min", floats(func(r *Reduction) float64 { return r.Min })},
 		{"max", floats(func(r *Reduction) float64 { return r.Max })},
 		{"governing", collect(scaled, func(r *Reduction) string { return r.Governing })},
-	}
+	}...)
 	if a.Selection.hasRoles() {
 		o = append(o, field{"governing_component", collect(scaled, func(r *Reduction) string { return r.GoverningComponent })})
 	}

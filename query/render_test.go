@@ -101,7 +101,7 @@ func checkReadable(t *testing.T, name string, format Format, text string) {
 // TestSpectrumJSONKeys: the names and shapes that programs rely on.
 func TestSpectrumJSONKeys(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
-	a := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Where: "true"}, Damping: 0.05, Percentiles: []float64{16, 97.5}})
+	a := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Where: "true"}, Damping: 0.05, Percentiles: []float64{50, 62.5}})
 	var got struct {
 		Selection struct {
 			Where, Component, Siting, Recipe, Screen string
@@ -139,7 +139,7 @@ func TestSpectrumJSONKeys(t *testing.T) {
 	// Every bit survives the text.
 	for p, r := range a.Reductions {
 		if got.PeriodsS[p] != a.PeriodsS[p] || got.Count[p] != r.Count || got.Mean[p] != r.Mean || got.LogMean[p] != r.LogMean ||
-			got.LogStd[p] != r.LogStd || got.Percentiles["16"][p] != r.Percentiles[0] || got.Percentiles["97.5"][p] != r.Percentiles[1] ||
+			got.LogStd[p] != r.LogStd || got.Percentiles["50"][p] != r.Percentiles[0] || got.Percentiles["62.5"][p] != r.Percentiles[1] ||
 			got.Min[p] != r.Min || got.Max[p] != r.Max || got.Governing[p] != r.Governing {
 			t.Errorf("period %d: JSON differs from %+v", p, r)
 		}

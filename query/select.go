@@ -53,7 +53,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
-	details |= condition.details() | s.Scope.details()
+	details |= condition.details() | s.Scope.details() | s.Balance.details()
 	if s.Component.IsRotated() || s.Component == ComponentAll || !s.IncludeUnknownDirections {
 		details |= db.DetailMotion // by which pairs are rotated, and what is horizontal
 	}
@@ -75,7 +75,7 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, details: details}
 	p.hint, p.leftOut, p.ignoresBand, p.screen = p.hintOf(), map[string]int{}, s.IgnoreUsableBand, s.Screen
-	p.report = SelectionReport{Where: s.Where, Scope: s.Scope, Component: s.Component, Siting: s.Siting, Recipe: snapshot.Generation.Recipe.Name, Screen: s.Screen}
+	p.report = SelectionReport{Where: s.Where, Scope: s.Scope, Component: s.Component, Siting: s.Siting, Recipe: snapshot.Generation.Recipe.Name, Screen: s.Screen, Balance: s.Balance}
 	p.motions = make([]motion, 0, len(held))
 	p.verticals = map[int64]*db.HeldComponent{}
 	for i := range held {
@@ -225,6 +225,7 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 	unknown, met, err := p.ask(m)
 	siting := m.members[0].Record.Siting
 	flag, unsolved := p.selection.Screen.screened(m), p.unsolvedBy(m)
+	unbalanced := p.selection.Balance.lacking(m.members[0].Record)
 	switch {
 	case err != nil || !met:
 		return "", false, err
@@ -242,6 +243,8 @@ func (p *picker) judge(m *motion, lacking string) (reason string, met bool, err 
 		return reasonDamaged, false, nil
 	case unknown != "":
 		return unknown + " unknown", false, nil
+	case unbalanced != "":
+		return unbalanced, false, nil
 	}
 	return "", true, nil
 }

@@ -184,12 +184,14 @@ type Selection struct {
 	// Screen leaves out motions for what was found of them; ScreenNormal by default, in
 	// lists and export ScreenNone.
 	Screen Screen
+	// Balance weighs motions; lists and export do not. BalanceNone by default.
+	Balance Balance
 }
 
 // ofEverything is s for lists and export, which show what statistics leave out.
 func (s Selection) ofEverything() Selection {
 	s.IncludeDuplicates, s.IncludeUnknownDirections, s.IgnoreUsableBand = true, true, true
-	s.Screen = ScreenNone
+	s.Screen, s.Balance = ScreenNone, BalanceNone
 	return s
 }
 
@@ -211,6 +213,9 @@ func (s Selection) withDefaults(component Component, siting Siting, accepted []C
 	if s.Screen, err = ParseScreen(string(s.Screen)); err != nil {
 		return s, err
 	}
+	if s.Balance, err = ParseBalance(string(s.Balance)); err != nil {
+		return s, err
+	}
 	_, err = s.Siting.taken()
 	return s, err
 }
@@ -223,6 +228,7 @@ type SelectionReport struct {
 	Siting    Siting
 	Recipe    string // by which the components are conditioned
 	Screen    Screen
+	Balance   Balance
 	Method    Method
 	Records   int // that contribute
 	Spectra   int // that contribute

@@ -136,11 +136,12 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
 		PeriodsS: periods, By: q.By,
 	}
-	if answer.Reductions, err = reduceAll(ctx, loaded, wholeSample(picked.motions), q.Measure, q.Percentiles); err != nil {
+	whole := picked.sample()
+	if answer.Reductions, err = reduceAll(ctx, loaded, whole, q.Measure, q.Percentiles); err != nil {
 		return nil, err
 	}
 	for _, g := range q.By.part(picked.motions) {
-		reductions, err := reduceAll(ctx, loaded, sample{picked.motions, g.motions}, q.Measure, q.Percentiles)
+		reductions, err := reduceAll(ctx, loaded, whole.of(&g), q.Measure, q.Percentiles)
 		if err != nil {
 			return nil, err
 		}

@@ -37,17 +37,18 @@ func written(t *testing.T, a interface {
 
 // TestSpectrumByHand: the geometric means at the first period and 2 % are
 // 0.01, 0.04 and 0.16 m, so the mean is 0.07, the geometric mean 0.04, the
-// deviation of ln is ln 4, and the positions of percentiles 16 and 84 among
-// three values are 0.32 and 1.68. Period p multiplies SD by p+1, and ω there is
+// deviation of ln is ln 4, and the positions of percentiles 25 and 75 among
+// three values are 0.5 and 1.5. Period p multiplies SD by p+1, and ω there is
 // 4, 2, 1, ½.
 func TestSpectrumByHand(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
+	percents := []float64{25, 50, 75}
 	a := askSpectrum(t, store, SpectrumQuestion{Damping: 0.02, Measure: MeasureSD})
 	if !slices.Equal(a.PeriodsS, handGrid.PeriodsS) {
 		t.Fatalf("periods %v, want the grid's", a.PeriodsS)
 	}
-	base := []float64{0.07, 0.04, 0.01 + 0.32*0.03, 0.04, 0.04 + 0.68*0.12, 0.01, 0.16}
-	names := []string{"mean", "log-mean", "p16", "p50", "p84", "min", "max"}
+	base := []float64{0.07, 0.04, 0.01 + 0.5*0.03, 0.04, 0.04 + 0.5*0.12, 0.01, 0.16}
+	names := []string{"mean", "log-mean", "p25", "p50", "p75", "min", "max"}
 	omegas := []float64{4, 2, 1, 0.5}
 	factors := map[Measure]func(w float64) float64{
 		MeasureSD:  func(float64) float64 { return 1 },
@@ -55,7 +56,7 @@ func TestSpectrumByHand(t *testing.T) {
 		MeasurePSA: func(w float64) float64 { return w * w / 9.80665 },
 	}
 	for measure, factor := range factors {
-		a := askSpectrum(t, store, SpectrumQuestion{Damping: 0.02, Measure: measure})
+		a := askSpectrum(t, store, SpectrumQuestion{Damping: 0.02, Measure: measure, Percentiles: percents})
 		for p, r := range a.Reductions {
 			got := append([]float64{r.Mean, r.LogMean}, append(slices.Clone(r.Percentiles), r.Min, r.Max)...)
 			for i := range got {

@@ -45,6 +45,7 @@ func statisticsFlags() []cli.Flag {
 		&cli.BoolFlag{Name: "ignore-usable-band", DisableDefaultText: true, Usage: "count ordinates too at periods at which filters and sampling leave nothing to believe"},
 		&cli.StringFlag{Name: "screen", Value: "normal", Usage: "leave out for what was found of quality: strict, normal or none"},
 		&cli.StringFlag{Name: "by", Usage: "the same statistics group by group too: an `ATTRIBUTE` such as event, station or site_class_en1998, or a number with edges of bins, magnitude:5,6,7"},
+		&cli.StringFlag{Name: "balance", Value: "none", Usage: "weigh motions so that every event, or every station, counts once: none, event or station"},
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
 		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
 		&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
@@ -71,6 +72,11 @@ func newSelection(c *cli.Context, component func(string) (query.Component, error
 	}
 	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
 	s.IgnoreUsableBand = c.Bool("ignore-usable-band")
+	if c.IsSet("balance") {
+		if s.Balance, err = query.ParseBalance(c.String("balance")); err != nil {
+			return s, err
+		}
+	}
 	if c.IsSet("screen") {
 		if s.Screen, err = query.ParseScreen(c.String("screen")); err != nil {
 			return s, err
