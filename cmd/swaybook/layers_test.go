@@ -23,7 +23,7 @@ var layers = map[string][]string{
 	"pipeline/intensity": {"pipeline/signal"},                                                                                                                                                                 // Fourier amplitudes
 	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                                                 // means and integrals
 	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                                                        // the loops behind the solver
-	"query":              {"db", "query/stats", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                                                                          // the way out; never pipeline itself
+	"query":              {"db", "query/stats", "query/modal", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                                                           // the way out; never pipeline itself
 }
 
 // sqlImports are for db alone.
