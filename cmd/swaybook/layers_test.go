@@ -23,7 +23,8 @@ var layers = map[string][]string{
 	"pipeline/intensity": {"pipeline/signal"},                                                                                                                                                                 // Fourier amplitudes
 	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                                                 // means and integrals
 	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                                                        // the loops behind the solver
-	"query":              {"db", "query/stats", "query/modal", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                                                           // the way out; never pipeline itself
+	"query":              {"db", "query/stats", "query/modal", "query/design", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                                           // the way out; never pipeline itself
+	"query/design":       {"query/stats"},                                                                                                                                                                     // logarithms of the same bits everywhere
 }
 
 // sqlImports are for db alone.
