@@ -42,6 +42,7 @@ type DemandAnswer struct {
 	Quantities  []Quantity
 	Band        *DemandBand // nil where none was asked for
 	By          Grouping
+	Extras      Extras
 	Groups      []DemandGroup // nil where none were asked for
 }
 

@@ -149,19 +149,5 @@ func reduceAll(ctx context.Context, o *ordinates, s sample, measure Measure, per
 	return out, err
 }
 
-// scaled returns the reduction in a unit of which one is `per` of the present.
-func (r Reduction) scaled(per float64) Reduction {
-	if per == 1 {
-		return r
-	}
-	r.Mean, r.LogMean, r.Min, r.Max = r.Mean/per, r.LogMean/per, r.Min/per, r.Max/per
-	percentiles := make([]float64, len(r.Percentiles))
-	for i, p := range r.Percentiles {
-		percentiles[i] = p / per
-	}
-	r.Percentiles = percentiles
-	return r
-}
-
 // isDefined reports whether a figure can be printed.
 func isDefined(x float64) bool { return !math.IsNaN(x) && !math.IsInf(x, 0) }

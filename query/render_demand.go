@@ -56,6 +56,10 @@ func (a *DemandAnswer) table(units Units) []byte {
 	return append(append(text, '\n'), a.Remarks()...)
 }
 
+func (a *DemandAnswer) statistics() []statistic {
+	return statisticsOf(&a.Selection, a.Percentiles, a.Extras)
+}
+
 func (a *DemandAnswer) isGrouped() bool { return a.By.Attribute != "" }
 
 // eachRow yields the statistics of every quantity that there is, of all motions and of
@@ -87,9 +91,10 @@ func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) [
 		t.columns = append(t.columns, column{name: "group", isWord: true})
 	}
 	if hasCounts {
-		t.columns = append(t.columns, a.Selection.countColumns()...)
+		t.columns = append(t.columns, column{name: "count"})
 	}
-	t.columns = append(t.columns, reductionColumns(a.Percentiles, "")...)
+	list := a.statistics()
+	t.columns = append(t.columns, columns(list, "")...)
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
 	a.eachRow(overBand, func(quantity, group string, r *Reduction) {
 		u := quantityUnits[quantity]
@@ -97,15 +102,15 @@ func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) [
 		if units == UnitsUS {
 			name, per = u.us, u.perUS
 		}
-		cells := []string{u.title, name}
+		row := []string{u.title, name}
 		if a.isGrouped() {
-			cells = append(cells, group)
+			row = append(row, group)
 		}
 		if hasCounts {
-			cells = append(cells, a.Selection.countCells(r)...)
+			row = append(row, fmt.Sprint(r.Count))
 		}
-		cells = append(cells, reductionCells(r.scaled(per))...)
-		t.add(append(cells, a.Selection.governingText(r))...)
+		row = append(row, cells(list, r, per)...)
+		t.add(append(row, a.Selection.governingText(r))...)
 	})
 	return t.appendTo(dst)
 }
@@ -117,24 +122,18 @@ func (a *DemandAnswer) csv() []byte {
 	if a.isGrouped() {
 		l.word("group")
 	}
-	l.words(a.Selection.countNames()...)
-	l.words("mean", "log_mean", "log_std_ln")
-	for _, p := range a.Percentiles {
-		l.word("p" + percentKey(p))
-	}
-	l.words("min", "max", "governing")
-	if a.Selection.hasRoles() {
-		l.word("governing_component")
-	}
+	list := a.statistics()
+	l.words(csvNames(list, "")...)
+	l.words(a.Selection.csvGoverning()...)
 	l.end()
-	a.csvRows(&l, false, a.Structure.PeriodS, a.Structure.PeriodS)
+	a.csvRows(&l, list, false, a.Structure.PeriodS, a.Structure.PeriodS)
 	if a.Band != nil {
-		a.csvRows(&l, true, a.Band.FromS, a.Band.ToS)
+		a.csvRows(&l, list, true, a.Band.FromS, a.Band.ToS)
 	}
 	return l.text
 }
 
-func (a *DemandAnswer) csvRows(l *csvLine, overBand bool, fromS, toS float64) {
+func (a *DemandAnswer) csvRows(l *csvLine, list []statistic, overBand bool, fromS, toS float64) {
 	a.eachRow(overBand, func(quantity, group string, r *Reduction) {
 		l.word(quantity)
 		l.number(fromS)
@@ -142,7 +141,7 @@ func (a *DemandAnswer) csvRows(l *csvLine, overBand bool, fromS, toS float64) {
 		if a.isGrouped() {
 			l.word(group)
 		}
-		a.Selection.csvCells(l, *r)
+		a.Selection.csvCells(l, list, r, 1)
 		l.end()
 	})
 }
@@ -199,29 +198,13 @@ func (a *DemandAnswer) demandFields(quantities []Quantity, band *DemandBand) obj
 }
 
 func (a *DemandAnswer) quantitiesObject(quantities []Quantity) object {
-	o := object{}
+	o, list := object{}, a.statistics()
 	for _, q := range quantities {
 		if q.Reduction == nil {
 			o = append(o, field{q.Name, nil})
 			continue
 		}
-		o = append(o, field{q.Name, a.reductionObject(q.Reduction)})
-	}
-	return o
-}
-
-func (a *DemandAnswer) reductionObject(r *Reduction) object {
-	o := object{{"count", r.Count}}
-	if !a.Selection.Balance.isNone() {
-		o = append(o, field{"effective", r.Effective})
-	}
-	o = append(o, object{
-		{"mean", r.Mean}, {"log_mean", r.LogMean}, {"log_std", r.LogStd},
-		{"percentiles", percentilesObject(a.Percentiles, func(i int) float64 { return r.Percentiles[i] })},
-		{"min", r.Min}, {"max", r.Max}, {"governing", r.Governing},
-	}...)
-	if a.Selection.hasRoles() {
-		o = append(o, field{"governing_component", r.GoverningComponent})
+		o = append(o, field{q.Name, a.Selection.statisticsObject(list, []Reduction{*q.Reduction}, 1, false)})
 	}
 	return o
 }

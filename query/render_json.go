@@ -157,12 +157,3 @@ func (r *SelectionReport) object() object {
 	}
 	return append(o, field{"left_out", leftOut}, field{"notes", append([]string{}, r.Notes...)})
 }
-
-// percentilesObject keys one value a percentile.
-func percentilesObject[T any](percents []float64, value func(i int) T) object {
-	o := object{}
-	for i, p := range percents {
-		o = append(o, field{percentKey(p), value(i)})
-	}
-	return o
-}

@@ -3,8 +3,6 @@ package query
 import (
 	"fmt"
 	"io"
-	"math"
-	"strconv"
 
 	"swaybook/pipeline/spectrum"
 )
@@ -81,16 +79,16 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 	if a.isGrouped() {
 		t.columns = append(t.columns, column{name: "group", isWord: true})
 	}
-	t.columns = append(t.columns, a.Selection.countColumns()...)
-	t.columns = append(t.columns, reductionColumns(a.Percentiles, unit)...)
+	list := a.statistics()
+	t.columns = append(append(t.columns, column{name: "count"}), columns(list, unit)...)
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
 	a.eachRow(func(p int, group string, r *Reduction) {
-		cells := []string{figure(a.PeriodsS[p])}
+		row := []string{figure(a.PeriodsS[p])}
 		if a.isGrouped() {
-			cells = append(cells, group)
+			row = append(row, group)
 		}
-		cells = append(append(cells, a.Selection.countCells(r)...), reductionCells(r.scaled(per))...)
-		t.add(append(cells, a.Selection.governingText(r))...)
+		row = append(append(row, fmt.Sprint(r.Count)), cells(list, r, per)...)
+		t.add(append(row, a.Selection.governingText(r))...)
 	})
 	in := " in " + unit
 	if a.Measure == MeasureVH {
@@ -138,98 +136,31 @@ func (r *SelectionReport) governingText(x *Reduction) string {
 	return x.Governing
 }
 
-// reductionColumns are the headings of reductionCells; an empty unit leaves
-// units out.
-func reductionColumns(percents []float64, unit string) []column {
-	columns := []column{{name: "mean", unit: unit}, {name: "log-mean", unit: unit}, {name: "sd of ln"}}
-	for _, p := range percents {
-		columns = append(columns, column{name: "p" + percentKey(p), unit: unit})
-	}
-	return append(columns, column{name: "min", unit: unit}, column{name: "max", unit: unit})
-}
-
-// countColumns are the headings of countCells.
-func (r *SelectionReport) countColumns() []column {
-	if r.Balance.isNone() {
-		return []column{{name: "count"}}
-	}
-	return []column{{name: "count"}, {name: "effective"}}
-}
-
-func (r *SelectionReport) countCells(x *Reduction) []string {
-	if r.Balance.isNone() {
-		return []string{fmt.Sprint(x.Count)}
-	}
-	return []string{fmt.Sprint(x.Count), strconv.FormatFloat(x.Effective, 'f', 1, 64)}
-}
-
-func reductionCells(r Reduction) []string {
-	cells := []string{figure(r.Mean), figure(r.LogMean), figure(r.LogStd)}
-	for _, p := range r.Percentiles {
-		if r.Count > 0 && math.IsNaN(p) {
-			cells = append(cells, "too few")
-			continue
-		}
-		cells = append(cells, figure(p))
-	}
-	return append(cells, figure(r.Min), figure(r.Max))
+func (a *SpectrumAnswer) statistics() []statistic {
+	return statisticsOf(&a.Selection, a.Percentiles, a.Extras)
 }
 
 func (a *SpectrumAnswer) csv(units Units) []byte {
 	_, suffix, per := a.Measure.unitOf(units)
 	suffix = "_" + string(a.Measure) + "_" + suffix
+	list := a.statistics()
 	var l csvLine
 	l.word("period_s")
 	if a.isGrouped() {
 		l.word("group")
 	}
-	l.words(a.Selection.countNames()...)
-	l.words("mean"+suffix, "log_mean"+suffix, "log_std_ln")
-	for _, p := range a.Percentiles {
-		l.word("p" + percentKey(p) + suffix)
-	}
-	l.words("min"+suffix, "max"+suffix, "governing")
-	if a.Selection.hasRoles() {
-		l.word("governing_component")
-	}
+	l.words(csvNames(list, suffix)...)
+	l.words(a.Selection.csvGoverning()...)
 	l.end()
 	a.eachRow(func(p int, group string, r *Reduction) {
 		l.number(a.PeriodsS[p])
 		if a.isGrouped() {
 			l.word(group)
 		}
-		a.Selection.csvCells(&l, r.scaled(per))
+		a.Selection.csvCells(&l, list, r, per)
 		l.end()
 	})
 	return l.text
-}
-
-// countNames are the columns of what is counted.
-func (r *SelectionReport) countNames() []string {
-	if r.Balance.isNone() {
-		return []string{"count"}
-	}
-	return []string{"count", "effective"}
-}
-
-// csvCells are those of a reduction, from its count to what governs.
-func (r *SelectionReport) csvCells(l *csvLine, x Reduction) {
-	l.integer(x.Count)
-	if !r.Balance.isNone() {
-		l.number(x.Effective)
-	}
-	l.number(x.Mean)
-	l.number(x.LogMean)
-	l.number(x.LogStd)
-	for _, p := range x.Percentiles {
-		l.number(p)
-	}
-	l.number(x.Min)
-	l.number(x.Max)
-	l.word(x.Governing)
-	if r.hasRoles() {
-		l.word(x.GoverningComponent)
-	}
 }
 
 func (a *SpectrumAnswer) object(units Units) object {
@@ -241,11 +172,12 @@ func (a *SpectrumAnswer) object(units Units) object {
 		{"unit", unit},
 		{"periods_s", a.PeriodsS},
 	}
-	o = append(o, a.statistics(a.Reductions, per)...)
+	list := a.statistics()
+	o = append(o, a.Selection.statisticsObject(list, a.Reductions, per, true)...)
 	if a.isGrouped() {
 		groups := make([]object, len(a.Groups))
 		for i := range a.Groups {
-			groups[i] = append(a.Groups[i].object(), a.statistics(a.Groups[i].Reductions, per)...)
+			groups[i] = append(a.Groups[i].object(), a.Selection.statisticsObject(list, a.Groups[i].Reductions, per, true)...)
 		}
 		o = append(o, field{"by", a.By.Attribute}, field{"groups", groups})
 	}
@@ -255,40 +187,4 @@ func (a *SpectrumAnswer) object(units Units) object {
 // object describes the group.
 func (g *Group) object() object {
 	return object{{"group", g.Label}, {"records", g.Records}, {"spectra", g.Spectra}, {"events", g.Events}}
-}
-
-// statistics are arrays by period, in a unit of which one is `per` of the present.
-func (a *SpectrumAnswer) statistics(reductions []Reduction, per float64) object {
-	scaled := make([]Reduction, len(reductions))
-	for i, r := range reductions {
-		scaled[i] = r.scaled(per)
-	}
-	floats := func(of func(r *Reduction) float64) []float64 { return collect(scaled, of) }
-	o := object{{"count", collect(scaled, func(r *Reduction) int { return r.Count })}}
-	if !a.Selection.Balance.isNone() {
-		o = append(o, field{"effective", floats(func(r *Reduction) float64 { return r.Effective })})
-	}
-	o = append(o, object{
-		{"mean", floats(func(r *Reduction) float64 { return r.Mean })},
-		{"log_mean", floats(func(r *Reduction) float64 { return r.LogMean })},
-		{"log_std", floats(func(r *Reduction) float64 { return r.LogStd })},
-		{"percentiles", percentilesObject(a.Percentiles, func(i int) []float64 {
-			return floats(func(r *Reduction) float64 { return r.Percentiles[i] })
-		})},
-		{"min", floats(func(r *Reduction) float64 { return r.Min })},
-		{"max", floats(func(r *Reduction) float64 { return r.Max })},
-		{"governing", collect(scaled, func(r *Reduction) string { return r.Governing })},
-	}...)
-	if a.Selection.hasRoles() {
-		o = append(o, field{"governing_component", collect(scaled, func(r *Reduction) string { return r.GoverningComponent })})
-	}
-	return o
-}
-
-func collect[T any](rs []Reduction, of func(r *Reduction) T) []T {
-	out := make([]T, len(rs))
-	for i := range rs {
-		out[i] = of(&rs[i])
-	}
-	return out
 }

@@ -35,6 +35,7 @@ type SpectrumAnswer struct {
 	PeriodsS    []float64 // ascending
 	Reductions  []Reduction
 	By          Grouping
+	Extras      Extras
 	Groups      []SpectrumGroup // nil where none were asked for
 }
 
