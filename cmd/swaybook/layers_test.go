@@ -23,8 +23,9 @@ var layers = map[string][]string{
 	"pipeline/intensity": {"pipeline/signal"},                                                                                                                                                                 // Fourier amplitudes
 	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                                                 // means and integrals
 	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                                                        // the loops behind the solver
-	"query":              {"db", "query/stats", "query/modal", "query/design", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                                           // the way out; never pipeline itself
+	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"},                            // the way out; never pipeline itself
 	"query/design":       {"query/stats"},                                                                                                                                                                     // logarithms of the same bits everywhere
+	"query/mixed":        {"query/stats"},                                                                                                                                                                     // logarithms that are the same everywhere
 }
 
 // sqlImports are for db alone.
