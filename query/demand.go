@@ -15,6 +15,7 @@ type DemandQuestion struct {
 	Selection             // component: ComponentRotD50, siting: SitingGround by default
 	Structure   Structure // see ParseStructure
 	BandWidth   float64   // ratio: the envelope over T·(1±BandWidth) too; 0: none
+	Extras                // none by default
 	By          Grouping  // the zero Grouping for none
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
 	Method      Method    // anything but the default is computed from samples
@@ -110,6 +111,9 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 	if q.Percentiles, err = checkPercentiles(q.Percentiles); err != nil {
 		return q, err
 	}
+	if q.Extras, err = q.Extras.withDefaults(); err != nil {
+		return q, err
+	}
 	if err := cmp.Or(checkBandWidth(q.BandWidth), q.By.validate()); err != nil {
 		return q, err
 	}
@@ -129,7 +133,8 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
-	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By}
+	picked.report.Notes = append(picked.report.Notes, q.Extras.notes(&picked.report, q.Structure.Damping)...)
+	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By, Extras: q.Extras}
 	whole := picked.sample()
 	answer.Quantities, answer.Band = q.reduceBoth(whole, loaded, at)
 	for _, g := range q.By.part(picked.motions) {
@@ -142,7 +147,7 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 // reduceBoth reduces a sample at the structure's period, that of position at, and over the
 // band.
 func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int) ([]Quantity, *DemandBand) {
-	r := newReducer(s, q.Percentiles)
+	r := newReducer(s, q.Percentiles, q.Extras)
 	quantities := q.reduce(r, o, at, at+1)
 	if q.BandWidth == 0 {
 		return quantities, nil
@@ -193,8 +198,12 @@ func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantit
 	values := make([]float64, len(r.at))
 	for i, quantity := range demandQuantities {
 		out[i].Name = quantity.name
+		level := math.NaN()
 		for p := from; p < to; p++ {
 			w, sd := omega(o.periodsS[p]), o.at(p)
+			if x := quantity.of(&q.Structure, designSD(q.Design, o.periodsS[p], q.Structure.Damping), w); p == from || x > level || math.IsNaN(x) {
+				level = x
+			}
 			for k, at := range r.at {
 				x := quantity.of(&q.Structure, sd[at], w)
 				if p == from || x > values[k] || math.IsNaN(x) {
@@ -203,7 +212,7 @@ func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantit
 			}
 		}
 		if slices.ContainsFunc(values, isDefined) {
-			reduction := r.reduce(values)
+			reduction := r.reduce(values, level)
 			out[i].Reduction = &reduction
 		}
 	}

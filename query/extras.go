@@ -1,6 +1,231 @@
 package query
 
-// Extras are figures that stand beside the usual ones where they are asked for.
-type Extras struct{}
+import (
+	"math"
+	"slices"
+	"strings"
 
-func (Extras) statistics([]float64) []statistic { return nil }
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"swaybook/query/design"
+	"swaybook/query/stats"
+)
+
+// Extras are figures that stand beside the usual ones where they are asked for.
+type Extras struct {
+	Design    *design.Spectrum // to compare with, nil for none
+	Spread    bool             // between and within events
+	Intervals bool             // of confidence, of each percentile
+	Lognormal bool             // the fitted distribution beside the percentiles
+	Level     float64          // of confidence; DefaultLevel where 0
+}
+
+// DefaultLevel is the level of confidence of intervals.
+const DefaultLevel = 0.9
+
+// The words of ParseExtras.
+const (
+	extraSpread    = "spread"
+	extraIntervals = "intervals"
+	extraLognormal = "lognormal"
+)
+
+// ParseExtras reads a list of "spread", "intervals" and "lognormal". The empty text gives
+// none.
+func ParseExtras(text string) (Extras, error) {
+	var e Extras
+	if strings.TrimSpace(text) == "" {
+		return e, nil
+	}
+	for word := range strings.SplitSeq(text, ",") {
+		switch strings.TrimSpace(word) {
+		case extraSpread:
+			e.Spread = true
+		case extraIntervals:
+			e.Intervals = true
+		case extraLognormal:
+			e.Lognormal = true
+		default:
+			return e, usage("show", "unknown figures %q; accepted: %s", strings.TrimSpace(word), joinWords([]string{extraSpread, extraIntervals, extraLognormal}))
+		}
+	}
+	return e, nil
+}
+
+// ParseLevel reads a level of confidence, "90%" or "0.9". The empty text gives
+// DefaultLevel.
+func ParseLevel(text string) (float64, error) {
+	if strings.TrimSpace(text) == "" {
+		return DefaultLevel, nil
+	}
+	level, err := parseRatio("confidence", text)
+	if err != nil {
+		return 0, err
+	}
+	return level, checkLevel(level)
+}
+
+func checkLevel(level float64) error {
+	if !(level >= 0.5 && level < 1) {
+		return usage("confidence", "%v is %v; a level is at least 50%% and less than 100%%", level, percentText(level))
+	}
+	return nil
+}
+
+func (e Extras) withDefaults() (Extras, error) {
+	if e.Level == 0 {
+		e.Level = DefaultLevel
+	}
+	return e, checkLevel(e.Level)
+}
+
+// extraFigures are those of one reduction; nil where they were not asked for.
+type extraFigures struct {
+	against   *against
+	spread    *spread
+	intervals []interval // one a percentile
+	lognormal *lognormal
+}
+
+// interval holds a percentile of what the sample is drawn from with at least the level of
+// confidence. Both are NaN where the sample is too small for that, or weighted.
+type interval struct{ low, high float64 }
+
+// intervals are the distribution-free ones of each percentile, by order statistics. They
+// take motions as independent.
+func (r *reducer) intervals(sorted []float64) []interval {
+	out := make([]interval, len(r.percents))
+	for i, percent := range r.percents {
+		out[i] = interval{math.NaN(), math.NaN()}
+		if r.clusters != nil {
+			continue
+		}
+		if k := r.ranksOf(len(sorted), percent); k.ok {
+			out[i] = interval{sorted[k.low], sorted[k.high]}
+		}
+	}
+	return out
+}
+
+// rankKey is a sample's size and a percentile.
+type rankKey struct {
+	n       int
+	percent float64
+}
+
+type ranks struct {
+	low, high int
+	ok        bool
+}
+
+// ranksOf keeps what it finds: most periods have samples of one size.
+func (r *reducer) ranksOf(n int, percent float64) ranks {
+	key := rankKey{n, percent}
+	found, ok := r.ranks[key]
+	if !ok {
+		found.low, found.high, _, found.ok = stats.PercentileInterval(n, percent, r.extras.Level)
+		r.ranks[key] = found
+	}
+	return found
+}
+
+// lognormal is the lognormal distribution of the sample's log-mean and deviation, and a
+// test whether the sample may come from one.
+type lognormal struct {
+	percentiles []float64
+	// statistic is that of Anderson and Darling, corrected for the size, and p the
+	// probability of at least as much; NaN of fewer than eight values, and weighted ones.
+	statistic, p float64
+}
+
+func (r *reducer) lognormal(out *Reduction, sorted, scratch []float64) *lognormal {
+	l := &lognormal{percentiles: make([]float64, len(r.percents)), statistic: math.NaN(), p: math.NaN()}
+	for i, percent := range r.percents {
+		l.percentiles[i] = math.NaN()
+		if percent > 0 && percent < 100 {
+			z := distuv.UnitNormal.Quantile(percent / 100)
+			l.percentiles[i] = out.LogMean * stats.Exp(float64(z*out.LogStd))
+		}
+	}
+	if r.clusters == nil {
+		l.statistic, l.p = stats.AndersonDarling(scratch, sorted)
+	}
+	return l
+}
+
+// statistics are the figures that were asked for.
+func (e Extras) statistics(percents []float64) (out []statistic) {
+	if e.Intervals {
+		for i, percent := range percents {
+			out = append(out, intervalStatistics(i, percentKey(percent))...)
+		}
+	}
+	if e.Lognormal {
+		out = append(out, lognormalStatistics(percents)...)
+	}
+	if e.Spread {
+		out = append(out, spreadStatistics()...)
+	}
+	if e.Design != nil {
+		out = append(out, designStatistics()...)
+	}
+	return out
+}
+
+func intervalStatistics(i int, key string) []statistic {
+	of := func(part func(*interval) float64) func(*Reduction) float64 {
+		return func(r *Reduction) float64 {
+			if r.extra.intervals == nil {
+				return math.NaN()
+			}
+			return part(&r.extra.intervals[i])
+		}
+	}
+	return []statistic{
+		{title: "p" + key + " low", csv: "p" + key + "_low", path: []string{"intervals", key, "low"}, hasUnit: true, of: of(func(v *interval) float64 { return v.low }), isPercentile: true},
+		{title: "p" + key + " high", csv: "p" + key + "_high", path: []string{"intervals", key, "high"}, hasUnit: true, of: of(func(v *interval) float64 { return v.high }), isPercentile: true},
+	}
+}
+
+func lognormalStatistics(percents []float64) []statistic {
+	of := func(part func(*lognormal) float64) func(*Reduction) float64 {
+		return func(r *Reduction) float64 {
+			if r.extra.lognormal == nil {
+				return math.NaN()
+			}
+			return part(r.extra.lognormal)
+		}
+	}
+	var out []statistic
+	for i, percent := range percents {
+		key := percentKey(percent)
+		out = append(out, statistic{title: "ln p" + key, csv: "lognormal_p" + key, path: []string{"lognormal", "percentiles", key}, hasUnit: true,
+			of: of(func(l *lognormal) float64 { return l.percentiles[i] })})
+	}
+	return append(out,
+		statistic{title: "A²*", csv: "anderson_darling", path: []string{"lognormal", "anderson_darling"}, of: of(func(l *lognormal) float64 { return l.statistic })},
+		statistic{title: "p-value", csv: "anderson_darling_p", path: []string{"lognormal", "p_value"}, of: of(func(l *lognormal) float64 { return l.p })})
+}
+
+// isAny reports whether anything is asked for.
+func (e Extras) isAny() bool { return e.Design != nil || e.Spread || e.Intervals || e.Lognormal }
+
+// notes are sentences that belong to the figures.
+func (e Extras) notes(s *SelectionReport, damping float64) []string {
+	var out []string
+	if e.Intervals {
+		if s.Balance.isNone() {
+			out = append(out, "intervals hold the percentile of what the motions are drawn from with "+percentText(e.Level)+" confidence, as if motions were independent; those of one event are not")
+		} else {
+			out = append(out, "intervals by order statistics are of percentiles that are not balanced")
+		}
+	}
+	if e.Design != nil {
+		out = append(out, "design spectrum "+e.Design.Name()+": "+e.Design.Words())
+		if ratio, fixed := e.Design.Damping(); fixed && ratio != damping {
+			out = append(out, "the design spectrum is that of "+percentText(ratio)+" damping, set beside motions at "+percentText(damping))
+		}
+		out = append(out, e.Design.Notes()...)
+	}
+	return slices.Clip(out)
+}

@@ -123,8 +123,9 @@ func BenchmarkReduce(b *testing.B) {
 	for i := range o.sd {
 		o.sd[i] = rng.ExpFloat64()
 	}
+	q := SpectrumQuestion{Measure: MeasurePSA, Percentiles: DefaultPercentiles()}
 	for b.Loop() {
-		if _, err := reduceAll(b.Context(), o, sample{motions: motions, at: upTo(len(motions))}, MeasurePSA, DefaultPercentiles()); err != nil {
+		if _, err := q.reduceAll(b.Context(), o, sample{motions: motions, at: upTo(len(motions))}); err != nil {
 			b.Fatal(err)
 		}
 	}

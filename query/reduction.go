@@ -6,6 +6,7 @@ import (
 	"runtime"
 	"slices"
 
+	"swaybook/query/mixed"
 	"swaybook/query/stats"
 )
 
@@ -26,6 +27,7 @@ type Reduction struct {
 	// several do, and GoverningComponent its component.
 	Governing          string
 	GoverningComponent string
+	extra              extraFigures
 }
 
 // DefaultPercentiles are the median and one standard deviation to each side of
@@ -36,12 +38,13 @@ func DefaultPercentiles() []float64 { return []float64{16, 50, 84} }
 type sample struct {
 	motions  []motion
 	clusters []int // what is balanced, by position in motions; nil: nothing
+	events   []int // by position in motions, -1 where unknown
 	at       []int
 }
 
 // sample is all motions.
 func (p *picked) sample() sample {
-	return sample{p.motions, p.report.Balance.clusters(p.motions), upTo(len(p.motions))}
+	return sample{p.motions, p.report.Balance.clusters(p.motions), eventsOf(p.motions), upTo(len(p.motions))}
 }
 
 // of is the sample's motions of a group of them all.
@@ -54,29 +57,45 @@ func (s sample) of(g *Group) sample {
 // goroutine.
 type reducer struct {
 	sample
-	percents                        []float64
-	known, weights, sorted, scratch []float64
+	percents                 []float64
+	extras                   Extras
+	weights, sorted, scratch []float64
+	ranks                    map[rankKey]ranks
+	fitter                   mixed.Fitter
+	logs                     []float64 // for the fit
+	groups                   []int
 }
 
-func newReducer(s sample, percents []float64) *reducer {
+func newReducer(s sample, percents []float64, extras Extras) *reducer {
 	n := len(s.at)
-	r := &reducer{sample: s, percents: percents, known: make([]float64, 0, n), sorted: make([]float64, n), scratch: make([]float64, n)}
+	r := &reducer{sample: s, percents: percents, extras: extras, sorted: make([]float64, n), scratch: make([]float64, n), ranks: map[rankKey]ranks{}}
 	if s.clusters != nil {
 		r.weights = make([]float64, n)
 	}
 	return r
 }
 
-// reduce takes one value a motion of the sample, in its order, NaN for those that have none.
-// Sums are of the sorted values, so that they are the same in every digit whatever the
-// order in which the files were read.
-func (r *reducer) reduce(values []float64) Reduction {
+// reduce takes one value a motion of the sample, in its order, NaN for those that have none,
+// and that of the design spectrum, NaN for none. Sums are of the sorted values, so that they
+// are the same in every digit whatever the order in which the files were read.
+func (r *reducer) reduce(values []float64, level float64) Reduction {
 	nan := math.NaN()
 	out := Reduction{Mean: nan, LogMean: nan, LogStd: nan, Min: nan, Max: nan}
-	if r.clusters != nil {
-		r.reduceWeighted(&out, values)
+	sorted, weights := r.sort(values)
+	n := len(sorted)
+	scratch := r.scratch[:n]
+	out.Count = n
+	if n > 0 {
+		out.Min, out.Max = sorted[0], sorted[n-1]
+	}
+	if weights == nil {
+		out.Effective, out.Mean = float64(n), stats.Mean(sorted)
+		out.Percentiles = stats.Percentiles(nil, sorted, r.percents)
+		out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
 	} else {
-		r.reduceEqual(&out, values)
+		out.Effective, out.Mean = stats.EffectiveNumber(weights), stats.WeightedMean(sorted, weights)
+		out.Percentiles = stats.WeightedPercentiles(nil, scratch, sorted, weights, r.percents)
+		out.LogMean, out.LogStd = stats.WeightedLogMoments(scratch, sorted, weights)
 	}
 	for i, percent := range r.percents {
 		if !stats.Supports(out.Effective, percent) {
@@ -87,62 +106,66 @@ func (r *reducer) reduce(values []float64) Reduction {
 		m := &r.motions[r.at[governing]]
 		out.Governing, out.GoverningComponent = m.record(), m.role
 	}
+	if r.extras.isAny() {
+		r.addExtras(&out, values, sorted, weights, level)
+	}
 	return out
 }
 
-func (r *reducer) reduceEqual(out *Reduction, values []float64) {
-	known := r.known[:0]
-	for _, x := range values {
-		if !math.IsNaN(x) {
-			known = append(known, x)
-		}
+// sort returns the known values in ascending order, with their weights where motions are
+// balanced, nil elsewhere.
+func (r *reducer) sort(values []float64) (sorted, weights []float64) {
+	if r.clusters != nil {
+		r.weigh(r.weights, values)
 	}
-	n := len(known)
-	out.Count, out.Effective = n, float64(n)
-	sorted, scratch := r.sorted[:n], r.scratch[:n]
-	copy(sorted, known)
-	stats.Sort(sorted, scratch)
-	out.Percentiles = stats.Percentiles(nil, sorted, r.percents)
-	if n > 0 {
-		out.Min, out.Max = sorted[0], sorted[n-1]
-		out.Mean = stats.Mean(sorted)
-		out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
-	}
-}
-
-func (r *reducer) reduceWeighted(out *Reduction, values []float64) {
-	r.weigh(r.weights, values)
-	sorted, n := r.sorted[:0], 0
+	sorted = r.sorted[:0]
 	for k, x := range values {
-		if !math.IsNaN(x) {
-			sorted, r.weights[n] = append(sorted, x), r.weights[k]
-			n++
+		if math.IsNaN(x) {
+			continue
 		}
+		if r.clusters != nil {
+			r.weights[len(sorted)] = r.weights[k]
+		}
+		sorted = append(sorted, x)
 	}
-	weights, scratch := r.weights[:n], r.scratch[:n]
+	if r.clusters == nil {
+		stats.Sort(sorted, r.scratch[:len(sorted)])
+		return sorted, nil
+	}
+	weights = r.weights[:len(sorted)]
 	stats.SortWeighted(sorted, weights)
-	out.Count, out.Effective = n, stats.EffectiveNumber(weights)
-	out.Percentiles = stats.WeightedPercentiles(nil, scratch, sorted, weights, r.percents)
-	if n > 0 {
-		out.Min, out.Max = sorted[0], sorted[n-1]
-		out.Mean = stats.WeightedMean(sorted, weights)
-		out.LogMean, out.LogStd = stats.WeightedLogMoments(scratch, sorted, weights)
+	return sorted, weights
+}
+
+func (r *reducer) addExtras(out *Reduction, values, sorted, weights []float64, level float64) {
+	scratch := r.scratch[:len(sorted)]
+	if r.extras.Intervals {
+		out.extra.intervals = r.intervals(sorted)
+	}
+	if r.extras.Lognormal {
+		out.extra.lognormal = r.lognormal(out, sorted, scratch)
+	}
+	if r.extras.Spread {
+		out.extra.spread = r.spread(values)
+	}
+	if r.extras.Design != nil {
+		out.extra.against = r.against(out, sorted, weights, scratch, level)
 	}
 }
 
-// reduceAll reduces a measure at every period, from several goroutines.
-func reduceAll(ctx context.Context, o *ordinates, s sample, measure Measure, percents []float64) ([]Reduction, error) {
+// reduceAll reduces the question's measure at every period, from several goroutines.
+func (q SpectrumQuestion) reduceAll(ctx context.Context, o *ordinates, s sample) ([]Reduction, error) {
 	out := make([]Reduction, len(o.periodsS))
 	workers := min(runtime.GOMAXPROCS(0), len(out))
 	err := inParallel(ctx, workers, func(ctx context.Context, first int) error {
-		r := newReducer(s, percents)
+		r := newReducer(s, q.Percentiles, q.Extras)
 		values := make([]float64, len(s.at))
 		for p := first; p < len(out) && ctx.Err() == nil; p += workers {
 			omega, sd := omega(o.periodsS[p]), o.at(p)
 			for k, i := range s.at {
-				values[k] = measure.of(sd[i], omega)
+				values[k] = q.Measure.of(sd[i], omega)
 			}
-			out[p] = r.reduce(values)
+			out[p] = r.reduce(values, q.Measure.of(designSD(q.Design, o.periodsS[p], q.Damping), omega))
 		}
 		return ctx.Err()
 	})

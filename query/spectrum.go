@@ -19,6 +19,7 @@ type SpectrumQuestion struct {
 	Damping     float64   // ratio
 	Measure     Measure   // MeasurePSA by default
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
+	Extras                // none by default
 	By          Grouping  // the zero Grouping for none
 	Band        Band      // grid periods taken; not with PeriodsS
 	PeriodsS    []float64 // nil: those of the grid in Band
@@ -78,7 +79,13 @@ func (q SpectrumQuestion) withDefaults() (SpectrumQuestion, error) {
 	if len(q.PeriodsS) > 0 && q.Band != (Band{}) {
 		return q, usage("band", "a list of periods and a band exclude each other; give one")
 	}
+	if q.Measure == MeasureVH && q.Design != nil {
+		return q, usage("design", "a ratio of spectra has no design spectrum")
+	}
 	if q.Percentiles, err = checkPercentiles(q.Percentiles); err != nil {
+		return q, err
+	}
+	if q.Extras, err = q.Extras.withDefaults(); err != nil {
 		return q, err
 	}
 	if err := cmp.Or(q.Band.validate(), q.By.validate()); err != nil {
@@ -133,16 +140,17 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		}
 	}
 	picked.report.noteMethod(q.Method)
+	picked.report.Notes = append(picked.report.Notes, q.Extras.notes(&picked.report, q.Damping)...)
 	answer := &SpectrumAnswer{
 		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
-		PeriodsS: periods, By: q.By,
+		PeriodsS: periods, By: q.By, Extras: q.Extras,
 	}
 	whole := picked.sample()
-	if answer.Reductions, err = reduceAll(ctx, loaded, whole, q.Measure, q.Percentiles); err != nil {
+	if answer.Reductions, err = q.reduceAll(ctx, loaded, whole); err != nil {
 		return nil, err
 	}
 	for _, g := range q.By.part(picked.motions) {
-		reductions, err := reduceAll(ctx, loaded, whole.of(&g), q.Measure, q.Percentiles)
+		reductions, err := q.reduceAll(ctx, loaded, whole.of(&g))
 		if err != nil {
 			return nil, err
 		}

@@ -164,3 +164,5 @@ func percentTitle(share float64) string {
 	}
 	return fmt.Sprintf("%.1f%%", 100*share)
 }
+
+func wholeNumber(x float64) string { return strconv.FormatFloat(x, 'f', 0, 64) }

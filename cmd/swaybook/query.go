@@ -45,6 +45,9 @@ func statisticsFlags() []cli.Flag {
 		&cli.BoolFlag{Name: "ignore-usable-band", DisableDefaultText: true, Usage: "count ordinates too at periods at which filters and sampling leave nothing to believe"},
 		&cli.StringFlag{Name: "screen", Value: "normal", Usage: "leave out for what was found of quality: strict, normal or none"},
 		&cli.StringFlag{Name: "by", Usage: "the same statistics group by group too: an `ATTRIBUTE` such as event, station or site_class_en1998, or a number with edges of bins, magnitude:5,6,7"},
+		&cli.StringFlag{Name: "design", Usage: "set the design spectrum that a TOML `FILE` describes beside the motions"},
+		&cli.StringFlag{Name: "show", Usage: "further figures, a `LIST` of spread (between and within events), intervals (of confidence, of each percentile) and lognormal (the fitted distribution)"},
+		&cli.StringFlag{Name: "confidence", Value: "90%", Usage: "level of confidence of intervals"},
 		&cli.StringFlag{Name: "balance", Value: "none", Usage: "weigh motions so that every event, or every station, counts once: none, event or station"},
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
 		&cli.StringFlag{Name: "percentiles", Value: "16,50,84", Usage: "percentiles, a `LIST`"},
@@ -121,6 +124,7 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 		parseInto(&q.Damping, c, "damping", query.ParseDamping),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
 		parseInto(&q.By, c, "by", query.ParseGrouping),
+		newExtras(&q.Extras, c),
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&q.Measure, c, "measure", query.ParseMeasure),
 		parseInto(&q.Band, c, "band", query.ParseBand),
@@ -128,6 +132,14 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 		parseInto(&o.units, c, "units", query.ParseUnits),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
 	)
+}
+
+// newExtras reads the flags of further figures.
+func newExtras(e *query.Extras, c *cli.Context) error {
+	return errors.Join(
+		parseInto(e, c, "show", query.ParseExtras),
+		parseInto(&e.Level, c, "confidence", query.ParseLevel),
+		parseInto(&e.Design, c, "design", query.ReadDesign))
 }
 
 // parseInto reads a flag's text into dst.
@@ -193,6 +205,7 @@ func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
 	return o, errors.Join(err, noArguments(c),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
 		parseInto(&q.By, c, "by", query.ParseGrouping),
+		newExtras(&q.Extras, c),
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&q.BandWidth, c, "band", query.ParseBandWidth),
 		parseInto(&o.units, c, "units", query.ParseUnits),

@@ -1,0 +1,93 @@
+package query
+
+import (
+	"errors"
+	"math"
+
+	"swaybook/query/design"
+	"swaybook/query/stats"
+)
+
+// ReadDesign reads a design spectrum; see package design for the files. The error is a
+// UsageError that names file, line and key.
+func ReadDesign(path string) (*design.Spectrum, error) {
+	if path == "" {
+		return nil, nil
+	}
+	s, err := design.Read(path)
+	if at, ok := errors.AsType[*design.FileError](err); ok {
+		return nil, &UsageError{What: "design", Why: at.Error(), Err: err}
+	}
+	return &s, err
+}
+
+// designSD is the SD in m of the design spectrum at a period in s, NaN where it has none.
+// Where it is for one damping only, that one is taken.
+func designSD(s *design.Spectrum, periodS, damping float64) float64 {
+	if s == nil {
+		return math.NaN()
+	}
+	if ratio, fixed := s.Damping(); fixed {
+		damping = ratio
+	}
+	w := omega(periodS)
+	return s.PSAg(periodS, damping) * StandardGravity / w / w
+}
+
+// against is how a sample lies beside the design spectrum.
+type against struct {
+	value float64 // of the design spectrum, in the quantity's unit
+	// median and p84 are the sample's percentiles over value, NaN where not supported.
+	median, p84 float64
+	above       float64 // share of the sample's weight that is above value
+}
+
+// against compares a sorted sample; weights is nil where all are equal.
+func (r *reducer) against(out *Reduction, sorted, weights, scratch []float64, value float64) *against {
+	a := &against{value: value, median: math.NaN(), p84: math.NaN(), above: math.NaN()}
+	if !isDefined(value) || len(sorted) == 0 {
+		return a
+	}
+	percents := []float64{50, 84}
+	var found []float64
+	if weights == nil {
+		found = stats.Percentiles(nil, sorted, percents)
+	} else {
+		found = stats.WeightedPercentiles(nil, scratch, sorted, weights, percents)
+	}
+	for i, into := range []*float64{&a.median, &a.p84} {
+		if stats.Supports(out.Effective, percents[i]) {
+			*into = found[i] / value
+		}
+	}
+	var total, above float64
+	for i, x := range sorted {
+		weight := 1.0
+		if weights != nil {
+			weight = weights[i]
+		}
+		total += weight
+		if x > value {
+			above += weight
+		}
+	}
+	a.above = above / total
+	return a
+}
+
+func designStatistics() []statistic {
+	of := func(part func(*against) float64) func(*Reduction) float64 {
+		return func(r *Reduction) float64 {
+			if r.extra.against == nil {
+				return math.NaN()
+			}
+			return part(r.extra.against)
+		}
+	}
+	return []statistic{
+		{title: "design", csv: "design", path: []string{"design", "value"}, hasUnit: true, of: of(func(a *against) float64 { return a.value })},
+		{title: "p50/design", csv: "p50_over_design", path: []string{"design", "median_ratio"}, of: of(func(a *against) float64 { return a.median })},
+		{title: "p84/design", csv: "p84_over_design", path: []string{"design", "p84_ratio"}, of: of(func(a *against) float64 { return a.p84 })},
+		{title: "above", csv: "share_above_design", path: []string{"design", "share_above"}, of: of(func(a *against) float64 { return a.above }), text: percentTitle},
+	}
+}
