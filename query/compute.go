@@ -10,7 +10,7 @@ import (
 	"swaybook/pipeline/spectrum"
 )
 
-// compute fills in some periods of some motions of o from samples, both given by
+// compute fills in some oscillators of some motions of o from samples, both given by
 // position, and notes those whose samples do not allow it. A motion is the unit of
 // work; the samples of at most GOMAXPROCS motions are in memory. The snapshot is
 // one connection, whose calls database/sql carries out one at a time;
@@ -21,7 +21,7 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 	}
 	oscillators := make([]spectrum.Oscillator, len(missing))
 	for i, p := range missing {
-		oscillators[i] = spectrum.Oscillator{PeriodS: o.periodsS[p], Damping: s.damping}
+		oscillators[i] = o.oscillators[p]
 	}
 	solvers := spectrum.NewSolvers(s.method, oscillators)
 	return inParallel(ctx, len(which), func(ctx context.Context, k int) error {

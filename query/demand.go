@@ -121,14 +121,15 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 }
 
 func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*DemandAnswer, error) {
-	s := source{snapshot: snapshot, damping: q.Structure.Damping, method: q.Method}
-	band := q.bandPeriods(snapshot.Generation.Grid.PeriodsS)
-	picked, err := pick(ctx, snapshot, q.Selection, s.details(band)|q.By.details())
+	s := source{snapshot: snapshot, method: q.Method}
+	band := q.Structure.bandPeriods(q.BandWidth, snapshot.Generation.Grid.PeriodsS)
+	oscillators := dampedBy(q.Structure.Damping, band)
+	picked, err := pick(ctx, snapshot, q.Selection, s.details(oscillators)|q.By.details())
 	if err != nil {
 		return nil, err
 	}
 	at := slices.Index(band, q.Structure.PeriodS)
-	loaded, err := s.load(ctx, picked, band, at)
+	loaded, err := s.load(ctx, picked, oscillators, at)
 	if err != nil {
 		return nil, err
 	}
@@ -148,22 +149,24 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 // band.
 func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int) ([]Quantity, *DemandBand) {
 	r := newReducer(s, q.Percentiles, q.Extras)
-	quantities := q.reduce(r, o, at, at+1)
+	quantities := q.Structure.reduce(r, o, []int{at})
 	if q.BandWidth == 0 {
 		return quantities, nil
 	}
-	last := len(o.periodsS) - 1
-	return quantities, &DemandBand{FromS: o.periodsS[0], ToS: o.periodsS[last], Quantities: q.reduce(r, o, 0, last+1)}
+	last := len(o.oscillators) - 1
+	return quantities, &DemandBand{
+		FromS: o.oscillators[0].PeriodS, ToS: o.oscillators[last].PeriodS, Quantities: q.Structure.reduce(r, o, upTo(last+1)),
+	}
 }
 
-// bandPeriods returns the structure's period and, where there is a band, its
-// ends and the grid's periods inside; ascending, each once.
-func (q DemandQuestion) bandPeriods(grid []float64) []float64 {
-	t := q.Structure.PeriodS
-	if q.BandWidth == 0 {
+// bandPeriods returns the structure's period and, where there is a band of this half-width,
+// its ends and the grid's periods inside; ascending, each once.
+func (s *Structure) bandPeriods(width float64, grid []float64) []float64 {
+	t := s.PeriodS
+	if width == 0 {
 		return []float64{t}
 	}
-	band := Band{FromS: stretched(t, -q.BandWidth), ToS: stretched(t, q.BandWidth)}
+	band := Band{FromS: stretched(t, -width), ToS: stretched(t, width)}
 	list := []float64{band.FromS, t, band.ToS}
 	for _, p := range grid {
 		if band.Contains(p) {
@@ -191,23 +194,23 @@ func decimal(x float64) *big.Rat {
 	return r
 }
 
-// reduce takes of every motion the largest value over periods from … to-1 and
-// reduces these, quantity by quantity.
-func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantity {
+// reduce takes of every motion the largest value over the oscillators of these positions
+// and reduces these, quantity by quantity.
+func (s *Structure) reduce(r *reducer, o *ordinates, positions []int) []Quantity {
 	out := make([]Quantity, len(demandQuantities))
 	values := make([]float64, len(r.at))
 	for i, quantity := range demandQuantities {
 		out[i].Name = quantity.name
 		level := math.NaN()
-		for p := from; p < to; p++ {
-			w, sd := omega(o.periodsS[p]), o.at(p)
-			if x := quantity.of(&q.Structure, designSD(q.Design, o.periodsS[p], q.Structure.Damping), w); p == from || x > level || math.IsNaN(x) {
+		for first, p := range positions {
+			periodS, sd := o.oscillators[p].PeriodS, o.at(p)
+			w, isFirst := omega(periodS), first == 0
+			if x := quantity.of(s, designSD(r.extras.Design, periodS, s.Damping), w); isEnvelope(x, level, isFirst) {
 				level = x
 			}
 			for k, at := range r.at {
-				x := quantity.of(&q.Structure, sd[at], w)
-				if p == from || x > values[k] || math.IsNaN(x) {
-					values[k] = x // what is unusable at one period has no envelope
+				if x := quantity.of(s, sd[at], w); isEnvelope(x, values[k], isFirst) {
+					values[k] = x
 				}
 			}
 		}
@@ -217,4 +220,10 @@ func (q DemandQuestion) reduce(r *reducer, o *ordinates, from, to int) []Quantit
 		}
 	}
 	return out
+}
+
+// isEnvelope reports whether x takes the place of the largest value so far. What has no
+// value at one period has no envelope.
+func isEnvelope(x, largest float64, isFirst bool) bool {
+	return isFirst || x > largest || math.IsNaN(x)
 }

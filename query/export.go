@@ -141,9 +141,9 @@ func (e *exporter) writePart(ctx context.Context, out *bufio.Writer, part []moti
 	loaded := make([]*ordinates, len(e.dampings))
 	unfit = map[int]string{}
 	for i, zeta := range e.dampings {
-		s := source{snapshot: e.snapshot, damping: zeta}
+		s := source{snapshot: e.snapshot}
 		var left map[int]string
-		if loaded[i], left, err = s.loadMotions(ctx, part, e.periods); err != nil {
+		if loaded[i], left, err = s.loadMotions(ctx, part, dampedBy(zeta, e.periods)); err != nil {
 			return nil, err
 		}
 		maps.Copy(unfit, left)

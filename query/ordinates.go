@@ -1,22 +1,35 @@
 package query
 
-import "math"
+import (
+	"math"
 
-// ordinates holds the SD in m of motions at periods. Values of one period
+	"swaybook/pipeline/spectrum"
+)
+
+// ordinates holds the SD in m of motions, of oscillators. Values of one oscillator
 // stand together, since that is how statistics read them.
 type ordinates struct {
-	periodsS []float64
-	motions  int
-	sd       []float64
+	oscillators []spectrum.Oscillator
+	motions     int
+	sd          []float64
 }
 
-func newOrdinates(periodsS []float64, motions int) *ordinates {
-	return &ordinates{periodsS: periodsS, motions: motions, sd: make([]float64, len(periodsS)*motions)}
+func newOrdinates(oscillators []spectrum.Oscillator, motions int) *ordinates {
+	return &ordinates{oscillators: oscillators, motions: motions, sd: make([]float64, len(oscillators)*motions)}
 }
 
-// at returns the values of all motions at a period.
-func (o *ordinates) at(period int) []float64 {
-	return o.sd[period*o.motions : (period+1)*o.motions]
+// dampedBy are the oscillators of periods in s and one damping.
+func dampedBy(damping float64, periodsS []float64) []spectrum.Oscillator {
+	out := make([]spectrum.Oscillator, len(periodsS))
+	for i, t := range periodsS {
+		out[i] = spectrum.Oscillator{PeriodS: t, Damping: damping}
+	}
+	return out
+}
+
+// at returns the values of all motions of the oscillator of this position.
+func (o *ordinates) at(position int) []float64 {
+	return o.sd[position*o.motions : (position+1)*o.motions]
 }
 
 // without returns the ordinates without some motions.
@@ -24,9 +37,9 @@ func (o *ordinates) without(motions map[int]string) *ordinates {
 	if len(motions) == 0 {
 		return o
 	}
-	out := newOrdinates(o.periodsS, o.motions-len(motions))
+	out := newOrdinates(o.oscillators, o.motions-len(motions))
 	sd := out.sd[:0]
-	for p := range o.periodsS {
+	for p := range o.oscillators {
 		for i, d := range o.at(p) {
 			if _, isOut := motions[i]; !isOut {
 				sd = append(sd, d)
@@ -79,8 +92,8 @@ func (m Measure) of(sd, omega float64) float64 {
 	return sd
 }
 
-// put takes in the SD of one member of motion i at some of the periods, sd[k]
-// at the period of position positions[k]. The members come one after another.
+// put takes in the SD of one member of motion i of some of the oscillators, sd[k]
+// of that of position positions[k]. The members come one after another.
 func (o *ordinates) put(i int, m *motion, isFirst bool, positions []int, sd []float64) {
 	if isFirst {
 		for k, p := range positions {

@@ -116,7 +116,7 @@ func BenchmarkReduce(b *testing.B) {
 	rng := rand.New(rand.NewPCG(1, 1))
 	grid := spectrum.DefaultGrid()
 	motions := make([]motion, n)
-	o := newOrdinates(grid.PeriodsS, n)
+	o := newOrdinates(dampedBy(0.05, grid.PeriodsS), n)
 	for i := range motions {
 		motions[i] = motion{members: []*db.HeldComponent{{}}}
 	}

@@ -155,17 +155,18 @@ func (r *reducer) addExtras(out *Reduction, values, sorted, weights []float64, l
 
 // reduceAll reduces the question's measure at every period, from several goroutines.
 func (q SpectrumQuestion) reduceAll(ctx context.Context, o *ordinates, s sample) ([]Reduction, error) {
-	out := make([]Reduction, len(o.periodsS))
+	out := make([]Reduction, len(o.oscillators))
 	workers := min(runtime.GOMAXPROCS(0), len(out))
 	err := inParallel(ctx, workers, func(ctx context.Context, first int) error {
 		r := newReducer(s, q.Percentiles, q.Extras)
 		values := make([]float64, len(s.at))
 		for p := first; p < len(out) && ctx.Err() == nil; p += workers {
-			omega, sd := omega(o.periodsS[p]), o.at(p)
+			periodS := o.oscillators[p].PeriodS
+			omega, sd := omega(periodS), o.at(p)
 			for k, i := range s.at {
 				values[k] = q.Measure.of(sd[i], omega)
 			}
-			out[p] = r.reduce(values, q.Measure.of(designSD(q.Design, o.periodsS[p], q.Damping), omega))
+			out[p] = r.reduce(values, q.Measure.of(designSD(q.Design, periodS, q.Damping), omega))
 		}
 		return ctx.Err()
 	})

@@ -23,40 +23,53 @@ func view(ctx context.Context, store *db.Store, f func(*db.Snapshot) error) erro
 	})
 }
 
-// source is where ordinates of a damping come from: one snapshot of a store.
+// source is where ordinates come from: one snapshot of a store.
 type source struct {
 	snapshot *db.Snapshot
-	damping  float64
 	method   Method
 }
 
-// gridPosition returns the position of the damping in the grid, -1 where
-// spectra of it are not stored by this method.
-func (s *source) gridPosition() int {
-	if s.method != spectrum.NigamJennings {
-		return -1
+// whereabouts say which oscillators the store has spectra of, and where.
+type whereabouts struct {
+	columns  []int   // of each oscillator in the grid's periods, -1 for one off it
+	byColumn [][]int // positions of those that are stored, by that of their damping in the grid
+	missing  []int   // positions of the others
+}
+
+// find looks for oscillators on the grid, of which nothing is stored by another method
+// than the store's.
+func (s *source) find(oscillators []spectrum.Oscillator) whereabouts {
+	grid := &s.snapshot.Generation.Grid
+	w := whereabouts{columns: columnsOf(grid.PeriodsS, oscillators), byColumn: make([][]int, len(grid.Dampings))}
+	for i, o := range oscillators {
+		damping := slices.Index(grid.Dampings, o.Damping)
+		if damping < 0 || w.columns[i] < 0 || s.method != defaultMethod {
+			w.missing = append(w.missing, i)
+		} else {
+			w.byColumn[damping] = append(w.byColumn[damping], i)
+		}
 	}
-	return slices.Index(s.snapshot.Generation.Grid.Dampings, s.damping)
+	return w
 }
 
 // details are what load needs of components: what computing needs, where there is
 // something to compute.
-func (s *source) details(periodsS []float64) db.Details {
-	if s.gridPosition() < 0 || slices.Contains(columnsOf(s.snapshot.Generation.Grid.PeriodsS, periodsS), -1) {
+func (s *source) details(oscillators []spectrum.Oscillator) db.Details {
+	if w := s.find(oscillators); len(w.missing) > 0 {
 		return db.DetailMotion
 	}
 	return 0
 }
 
-// load returns the SD of the motions at the periods: read from the store where
+// load returns the SD of the motions of the oscillators: read from the store where
 // damping and period are on its grid, computed from the stored samples
 // otherwise, and where the store lacks the spectrum of a rotated pair. What it
 // cannot give is left out of the selection, and so is what lies outside the usable band
 // at every period, or at that of position must where this is not negative, and what counts
 // in a better version there; single ordinates outside, or of which a better version has
 // one, are NaN. The error is an EmptyError where nothing is left.
-func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must int) (*ordinates, error) {
-	o, unfit, err := s.loadMotions(ctx, p.motions, periodsS)
+func (s *source) load(ctx context.Context, p *picked, oscillators []spectrum.Oscillator, must int) (*ordinates, error) {
+	o, unfit, err := s.loadMotions(ctx, p.motions, oscillators)
 	if err != nil {
 		return nil, err
 	}
@@ -81,22 +94,16 @@ func (s *source) load(ctx context.Context, p *picked, periodsS []float64, must i
 
 // loadMotions returns beside the SD of the motions the positions of those whose SD
 // cannot be had, and why; theirs has no meaning.
-func (s *source) loadMotions(ctx context.Context, motions []motion, periodsS []float64) (*ordinates, map[int]string, error) {
-	o := newOrdinates(periodsS, len(motions))
+func (s *source) loadMotions(ctx context.Context, motions []motion, oscillators []spectrum.Oscillator) (*ordinates, map[int]string, error) {
+	o := newOrdinates(oscillators, len(motions))
 	out := &unfit{reasons: map[int]string{}}
-	var stored, missing []int // positions in periodsS
-	position := s.gridPosition()
-	columns := columnsOf(s.snapshot.Generation.Grid.PeriodsS, periodsS)
-	for i, column := range columns {
-		if position >= 0 && column >= 0 {
-			stored = append(stored, i)
-		} else {
-			missing = append(missing, i)
+	w := s.find(oscillators)
+	for damping, stored := range w.byColumn {
+		if len(stored) == 0 {
+			continue
 		}
-	}
-	if len(stored) > 0 {
-		r := newReader(o, motions, out, stored, columns)
-		lacking, err := r.readAll(ctx, s.snapshot, position)
+		r := newReader(o, motions, out, stored, w.columns)
+		lacking, err := r.readAll(ctx, s.snapshot, damping)
 		if err != nil {
 			return nil, nil, err
 		}
@@ -104,7 +111,7 @@ func (s *source) loadMotions(ctx context.Context, motions []motion, periodsS []f
 			return nil, nil, err
 		}
 	}
-	return o, out.reasons, s.compute(ctx, o, motions, out, upTo(len(motions)), missing)
+	return o, out.reasons, s.compute(ctx, o, motions, out, upTo(len(motions)), w.missing)
 }
 
 // unfit notes motions, by position, that cannot be answered for, and why. It is
@@ -139,15 +146,15 @@ func upTo(n int) []int {
 	return out
 }
 
-// columnsOf returns the position in grid of each period, -1 for one off it.
-func columnsOf(grid, periodsS []float64) []int {
+// columnsOf returns the position in grid of each oscillator's period, -1 for one off it.
+func columnsOf(grid []float64, oscillators []spectrum.Oscillator) []int {
 	at := make(map[float64]int, len(grid))
 	for i, p := range grid {
 		at[p] = i
 	}
-	out := make([]int, len(periodsS))
-	for i, p := range periodsS {
-		column, ok := at[p]
+	out := make([]int, len(oscillators))
+	for i, o := range oscillators {
+		column, ok := at[o.PeriodS]
 		if !ok {
 			column = -1
 		}

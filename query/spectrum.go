@@ -125,12 +125,13 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	if err != nil {
 		return nil, err
 	}
-	s := source{snapshot: snapshot, damping: q.Damping, method: q.Method}
-	picked, err := pick(ctx, snapshot, q.Selection, s.details(periods)|q.By.details())
+	s := source{snapshot: snapshot, method: q.Method}
+	oscillators := dampedBy(q.Damping, periods)
+	picked, err := pick(ctx, snapshot, q.Selection, s.details(oscillators)|q.By.details())
 	if err != nil {
 		return nil, err
 	}
-	loaded, err := s.load(ctx, picked, periods, -1)
+	loaded, err := s.load(ctx, picked, oscillators, -1)
 	if err != nil {
 		return nil, err
 	}

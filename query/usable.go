@@ -60,7 +60,8 @@ func (o *ordinates) keepUsable(motions []motion, must int) (without map[int]stri
 	for i := range motions {
 		band := motions[i].usableBand()
 		kept, isCoarse := 0, false
-		for p, t := range o.periodsS {
+		for p, oscillator := range o.oscillators {
+			t := oscillator.PeriodS
 			if band.has(t) {
 				kept++
 				isCoarse = isCoarse || t < band.coarseS*(1-1e-9)
@@ -69,10 +70,10 @@ func (o *ordinates) keepUsable(motions []motion, must int) (without map[int]stri
 			}
 		}
 		switch {
-		case kept == 0, must >= 0 && !band.has(o.periodsS[must]):
+		case kept == 0, must >= 0 && !band.has(o.oscillators[must].PeriodS):
 			without[i] = reasonUnusable
 			continue
-		case kept < len(o.periodsS):
+		case kept < len(o.oscillators):
 			partly++
 		}
 		if isCoarse {

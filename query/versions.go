@@ -202,7 +202,7 @@ func (o *ordinates) keepBest(rivals []rival, must int, unfit map[int]string) (wi
 			continue
 		}
 		kept, lost := 0, 0
-		for p := range o.periodsS {
+		for p := range o.oscillators {
 			sd := o.at(p)
 			if math.IsNaN(sd[r.at]) {
 				continue

@@ -49,7 +49,7 @@ func TestVersionsCompleteOneAnother(t *testing.T) {
 	versions := []motion{motionOf(1, "A"), motionOf(2, "B"), motionOf(3, "C"), motionOf(4, "D")}
 	v := versions4()
 	nan := math.NaN()
-	o := &ordinates{periodsS: []float64{1, 2, 3}, motions: 4, sd: []float64{
+	o := &ordinates{oscillators: dampedBy(0.05, []float64{1, 2, 3}), motions: 4, sd: []float64{
 		1, 2, 3, 4,
 		nan, 2, 3, 4,
 		nan, nan, 3, nan,

@@ -29,7 +29,7 @@ func (s *source) overHorizontal(ctx context.Context, p *picked, horizontal *ordi
 	for i := range p.motions {
 		verticals[i] = motion{members: []*db.HeldComponent{p.verticals[p.motions[i].members[0].RecordID]}, role: db.RoleV}
 	}
-	vertical, unfit, err := s.loadMotions(ctx, verticals, horizontal.periodsS)
+	vertical, unfit, err := s.loadMotions(ctx, verticals, horizontal.oscillators)
 	if err != nil {
 		return nil, err
 	}
