@@ -1,6 +1,7 @@
 package stats
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"math/rand/v2"
@@ -202,23 +203,43 @@ func TestWeightedPercentilesProperties(t *testing.T) {
 	}
 }
 
+// TestSortWeighted compares with an order by comparison, over lengths on both
+// sides of the change of method.
 func TestSortWeighted(t *testing.T) {
 	const seed = 45
 	rng := rand.New(rand.NewPCG(seed, 1))
-	for _, n := range []int{0, 1, 2, 300} {
-		xs, weights := drawn(rng, n), make([]float64, n)
-		for i := range weights {
-			weights[i] = float64(rng.IntN(3))
-		}
-		SortWeighted(xs, weights)
-		shuffled, carried := slices.Clone(xs), slices.Clone(weights)
-		rng.Shuffle(n, func(i, j int) {
-			shuffled[i], shuffled[j] = shuffled[j], shuffled[i]
-			carried[i], carried[j] = carried[j], carried[i]
-		})
-		SortWeighted(shuffled, carried)
-		if !slices.IsSorted(xs) || !slices.Equal(xs, shuffled) || !slices.Equal(weights, carried) {
-			t.Fatalf("seed %d, n %d: the order of the pairs shows", seed, n)
+	for _, n := range []int{0, 1, 2, 255, 256, 257, 3001} {
+		for _, kind := range []string{"ties", "one value", "signed", "with NaN"} {
+			xs, weights := drawn(rng, n), make([]float64, n)
+			for i := range weights {
+				weights[i] = float64(rng.IntN(3))
+				switch kind {
+				case "one value":
+					xs[i] = 0.25
+				case "signed":
+					xs[i] = -xs[i]
+				case "with NaN":
+					if i%9 == 0 {
+						xs[i] = math.NaN()
+					}
+				}
+			}
+			rng.Shuffle(n, func(i, j int) { xs[i], xs[j] = xs[j], xs[i] })
+			order := make([]int, n)
+			for i := range order {
+				order[i] = i
+			}
+			slices.SortFunc(order, func(a, b int) int {
+				return cmp.Or(cmp.Compare(xs[a], xs[b]), cmp.Compare(weights[a], weights[b]))
+			})
+			var want, wantWeights []float64
+			for _, i := range order {
+				want, wantWeights = append(want, xs[i]), append(wantWeights, weights[i])
+			}
+			SortWeighted(xs, weights)
+			if !sameBits(xs, want) || !sameBits(weights, wantWeights) {
+				t.Fatalf("seed %d, n %d, %s: not in order", seed, n, kind)
+			}
 		}
 	}
 	xs, weights := []float64{3, 1, 2, 1}, []float64{30, 11, 20, 10}
@@ -244,13 +265,19 @@ func BenchmarkWeighted(b *testing.B) {
 		xs[i], weights[i] = rng.ExpFloat64(), rng.Float64()
 	}
 	sorted, carried, scratch := slices.Clone(xs), slices.Clone(weights), make([]float64, n)
-	b.Run(fmt.Sprintf("sort/%d", n), func(b *testing.B) {
-		for b.Loop() {
-			copy(sorted, xs)
-			copy(carried, weights)
-			SortWeighted(sorted, carried)
-		}
-	})
+	for _, length := range []int{64, 256, 1000, n} {
+		b.Run(fmt.Sprintf("sort/%d", length), func(b *testing.B) {
+			for at := 0; ; at = (at + 7) % n { // another sample each time
+				if !b.Loop() {
+					break
+				}
+				for i := range length {
+					sorted[i], carried[i] = xs[(at+i)%n], weights[(at+i)%n]
+				}
+				SortWeighted(sorted[:length], carried[:length])
+			}
+		})
+	}
 	dst, percents := make([]float64, 3), []float64{16, 50, 84}
 	b.Run(fmt.Sprintf("percentiles/%d", n), func(b *testing.B) {
 		for b.Loop() {
