@@ -3,6 +3,7 @@ package query
 import (
 	"errors"
 	"math"
+	"sort"
 
 	"swaybook/query/design"
 	"swaybook/query/stats"
@@ -60,19 +61,28 @@ func (r *reducer) against(out *Reduction, sorted, weights, scratch []float64, va
 			*into = found[i] / value
 		}
 	}
+	a.above = r.above(value)
+	return a
+}
+
+// above is the share of the weight of the motions last reduced whose value is above this.
+func (r *reducer) above(value float64) float64 {
+	if r.reducedWeights == nil {
+		return float64(len(r.reduced)-atMost(r.reduced, value)) / float64(len(r.reduced))
+	}
 	var total, above float64
-	for i, x := range sorted {
-		weight := 1.0
-		if weights != nil {
-			weight = weights[i]
-		}
-		total += weight
+	for i, x := range r.reduced {
+		total += r.reducedWeights[i]
 		if x > value {
-			above += weight
+			above += r.reducedWeights[i]
 		}
 	}
-	a.above = above / total
-	return a
+	return above / total
+}
+
+// atMost counts the values of an ascending list up to x.
+func atMost(sorted []float64, x float64) int {
+	return sort.Search(len(sorted), func(i int) bool { return sorted[i] > x })
 }
 
 func designStatistics() []statistic {

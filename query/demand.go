@@ -149,13 +149,13 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 // band.
 func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int) ([]Quantity, *DemandBand) {
 	r := newReducer(s, q.Percentiles, q.Extras)
-	quantities := q.Structure.reduce(r, o, []int{at})
+	quantities := q.Structure.reduce(r, o, []int{at}, nil)
 	if q.BandWidth == 0 {
 		return quantities, nil
 	}
 	last := len(o.oscillators) - 1
 	return quantities, &DemandBand{
-		FromS: o.oscillators[0].PeriodS, ToS: o.oscillators[last].PeriodS, Quantities: q.Structure.reduce(r, o, upTo(last+1)),
+		FromS: o.oscillators[0].PeriodS, ToS: o.oscillators[last].PeriodS, Quantities: q.Structure.reduce(r, o, upTo(last+1), nil),
 	}
 }
 
@@ -195,8 +195,9 @@ func decimal(x float64) *big.Rat {
 }
 
 // reduce takes of every motion the largest value over the oscillators of these positions
-// and reduces these, quantity by quantity.
-func (s *Structure) reduce(r *reducer, o *ordinates, positions []int) []Quantity {
+// and reduces these, quantity by quantity. With each of them it calls also, where that is
+// not nil.
+func (s *Structure) reduce(r *reducer, o *ordinates, positions []int, also func(name string, x *Reduction)) []Quantity {
 	out := make([]Quantity, len(demandQuantities))
 	values := make([]float64, len(r.at))
 	for i, quantity := range demandQuantities {
@@ -217,6 +218,9 @@ func (s *Structure) reduce(r *reducer, o *ordinates, positions []int) []Quantity
 		if slices.ContainsFunc(values, isDefined) {
 			reduction := r.reduce(values, level)
 			out[i].Reduction = &reduction
+			if also != nil {
+				also(quantity.name, &reduction)
+			}
 		}
 	}
 	return out

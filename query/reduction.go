@@ -3,7 +3,6 @@ package query
 import (
 	"context"
 	"math"
-	"runtime"
 	"slices"
 
 	"swaybook/query/mixed"
@@ -62,6 +61,7 @@ type reducer struct {
 	weights, sorted, scratch []float64
 	ranks                    map[rankKey]ranks
 	fitter                   mixed.Fitter
+	reduced, reducedWeights  []float64 // the values last reduced, ascending, and their weights, nil for none
 	logs                     []float64 // for the fit
 	groups                   []int
 }
@@ -82,6 +82,7 @@ func (r *reducer) reduce(values []float64, level float64) Reduction {
 	nan := math.NaN()
 	out := Reduction{Mean: nan, LogMean: nan, LogStd: nan, Min: nan, Max: nan}
 	sorted, weights := r.sort(values)
+	r.reduced, r.reducedWeights = sorted, weights
 	n := len(sorted)
 	scratch := r.scratch[:n]
 	out.Count = n
@@ -156,7 +157,7 @@ func (r *reducer) addExtras(out *Reduction, values, sorted, weights []float64, l
 // reduceAll reduces the question's measure at every period, from several goroutines.
 func (q SpectrumQuestion) reduceAll(ctx context.Context, o *ordinates, s sample) ([]Reduction, error) {
 	out := make([]Reduction, len(o.oscillators))
-	workers := min(runtime.GOMAXPROCS(0), len(out))
+	workers := min(maxWorkers(), len(out))
 	err := inParallel(ctx, workers, func(ctx context.Context, first int) error {
 		r := newReducer(s, q.Percentiles, q.Extras)
 		values := make([]float64, len(s.at))

@@ -98,10 +98,7 @@ func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) [
 	t.columns = append(t.columns, column{name: "governing", isWord: true})
 	a.eachRow(overBand, func(quantity, group string, r *Reduction) {
 		u := quantityUnits[quantity]
-		name, per := u.si, u.perSI
-		if units == UnitsUS {
-			name, per = u.us, u.perUS
-		}
+		name, per := u.in(units)
 		row := []string{u.title, name}
 		if a.isGrouped() {
 			row = append(row, group)
@@ -190,21 +187,26 @@ func (a *DemandAnswer) object() object {
 
 // demandFields are the quantities at the period and, where there is one, over the band.
 func (a *DemandAnswer) demandFields(quantities []Quantity, band *DemandBand) object {
-	o := object{{"quantities", a.quantitiesObject(quantities)}, {"band", nil}}
+	list := a.statistics()
+	o := object{{"quantities", a.Selection.quantitiesObject(list, quantities)}, {"band", nil}}
 	if band != nil {
-		o[1].value = object{{"from_s", band.FromS}, {"to_s", band.ToS}, {"quantities", a.quantitiesObject(band.Quantities)}}
+		o[1].value = a.Selection.bandObject(list, band)
 	}
 	return o
 }
 
-func (a *DemandAnswer) quantitiesObject(quantities []Quantity) object {
-	o, list := object{}, a.statistics()
+func (s *SelectionReport) bandObject(list []statistic, band *DemandBand) object {
+	return object{{"from_s", band.FromS}, {"to_s", band.ToS}, {"quantities", s.quantitiesObject(list, band.Quantities)}}
+}
+
+func (s *SelectionReport) quantitiesObject(list []statistic, quantities []Quantity) object {
+	o := object{}
 	for _, q := range quantities {
 		if q.Reduction == nil {
 			o = append(o, field{q.Name, nil})
 			continue
 		}
-		o = append(o, field{q.Name, a.Selection.statisticsObject(list, []Reduction{*q.Reduction}, 1, false)})
+		o = append(o, field{q.Name, s.statisticsObject(list, []Reduction{*q.Reduction}, 1, false)})
 	}
 	return o
 }

@@ -163,11 +163,14 @@ func columnsOf(grid []float64, oscillators []spectrum.Oscillator) []int {
 	return out
 }
 
+// maxWorkers is the number of processors that may be used.
+func maxWorkers() int { return runtime.GOMAXPROCS(0) }
+
 // inParallel calls f for 0 … n-1 from as many goroutines as there are
 // processors and returns the first error, after all have ended.
 func inParallel(ctx context.Context, n int, f func(ctx context.Context, i int) error) error {
 	group, inner := errgroup.WithContext(ctx)
-	group.SetLimit(runtime.GOMAXPROCS(0))
+	group.SetLimit(maxWorkers())
 	for i := range n {
 		if inner.Err() != nil {
 			break

@@ -172,9 +172,14 @@ func queryDemandCommand() *cli.Command {
 			&cli.StringFlag{Name: "mass", Usage: "mass, such as 52000kg or 52t"},
 			&cli.StringFlag{Name: "height", Usage: "height of the mass above the base, such as 6m or 20ft"},
 			&cli.StringFlag{Name: "band", Usage: "show the envelope over T·(1±BAND) too, such as 10%"},
+			&cli.StringFlag{Name: "structures", Usage: "instead of one structure those of a CSV or TOML `FILE`, a row each"},
+			&cli.StringFlag{Name: "ordinates", Value: "exact", Usage: "with --structures: exact, or grid, interpolated between stored ones"},
 			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
+			if c.IsSet("structures") {
+				return queryPortfolio(c)
+			}
 			o, err := newDemandOptions(c)
 			if err != nil {
 				return err

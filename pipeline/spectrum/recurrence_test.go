@@ -164,7 +164,8 @@ func TestNoOpenFusing(t *testing.T) {
 	if err != nil {
 		t.Skip("no go command in the path")
 	}
-	packages := []string{".", "../internal/kernel", "../geodesy", "../likeness", "../signal", "../condition", "../quality", "../intensity"}
+	packages := []string{".", "../internal/kernel", "../geodesy", "../likeness", "../signal", "../condition", "../quality", "../intensity",
+		"../../query/stats", "../../query/mixed", "../../query/modal", "../../query/design"}
 	for _, dir := range packages {
 		if _, err := os.ReadDir(dir); err != nil { // tells the cache of test results what this one depends on
 			t.Fatal(err)

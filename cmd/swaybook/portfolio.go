@@ -1,0 +1,62 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/query"
+)
+
+// oneStructure are the flags that describe a single structure, or part its answer.
+var oneStructure = []string{"period", "stiffness", "weight", "mass", "height", "damping", "band", "by"}
+
+// queryPortfolio answers for the structures of a file.
+func queryPortfolio(c *cli.Context) error {
+	o, err := newPortfolioOptions(c)
+	if err != nil {
+		return err
+	}
+	return withStore(c, func(ctx context.Context, store *db.Store) error {
+		return runPortfolio(ctx, store, o, c.App.Writer, c.App.ErrWriter)
+	})
+}
+
+type portfolioOptions struct {
+	question query.PortfolioQuestion
+	format   query.Format
+	units    query.Units
+}
+
+func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
+	for _, flag := range oneStructure {
+		if c.IsSet(flag) {
+			return o, usagef("--structures and --%s exclude each other: the file says it of every structure", flag)
+		}
+	}
+	q := &o.question
+	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
+	return o, errors.Join(err, noArguments(c),
+		parseInto(&q.Structures, c, "structures", query.ReadPortfolio),
+		parseInto(&q.Ordinates, c, "ordinates", query.ParseSource),
+		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
+		newExtras(&q.Extras, c),
+		parseInto(&q.Method, c, "method", query.ParseMethod),
+		parseInto(&o.units, c, "units", query.ParseUnits),
+		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }))
+}
+
+func runPortfolio(ctx context.Context, store *db.Store, o portfolioOptions, w, stderr io.Writer) error {
+	answer, err := o.question.Ask(ctx, store)
+	if err != nil {
+		return err
+	}
+	if o.format == query.FormatCSV {
+		fmt.Fprint(stderr, answer.Remarks())
+	}
+	return answer.Write(w, o.format, o.units)
+}

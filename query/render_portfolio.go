@@ -1,0 +1,333 @@
+package query
+
+import (
+	"fmt"
+	"io"
+	"math"
+	"slices"
+)
+
+// Write renders the answer as a table of what matters first, or as CSV or JSON of
+// everything, which are in SI whatever the units. The error is a UsageError for another
+// format and otherwise one of w.
+func (a *PortfolioAnswer) Write(w io.Writer, format Format, units Units) error {
+	var text []byte
+	var err error
+	switch format {
+	case FormatTable, "":
+		text = a.table(units)
+	case FormatCSV:
+		text = a.csv()
+	case FormatJSON:
+		text, err = jsonText(a.object())
+	default:
+		_, err = ParseFormat(string(format))
+	}
+	if err != nil {
+		return err
+	}
+	return writeText(w, "demands", text)
+}
+
+// Remarks returns the selection's remarks, how far interpolated ordinates are off, and the
+// caution.
+func (a *PortfolioAnswer) Remarks() string {
+	if a.Error == nil {
+		return remarks(&a.Selection)
+	}
+	return fmt.Sprintf("note: ordinates interpolated in the grid: of %s and %s, exact ones differ by %s in the median, %s at 95%% of them, %s at most\n",
+		countOf(a.Error.Oscillators, "oscillator", "oscillators"), countOf(a.Error.Motions, "motion", "motions"),
+		percentTitle(a.Error.Median), percentTitle(a.Error.P95), percentTitle(a.Error.Max)) + remarks(&a.Selection)
+}
+
+// shown are the positions of the percentiles that a table has room for: the median, where
+// it was asked for, and the greatest.
+func (a *PortfolioAnswer) shown() []int {
+	if len(a.Percentiles) == 0 {
+		return nil
+	}
+	greatest := a.greatest()
+	if median := slices.Index(a.Percentiles, 50); median >= 0 && median != greatest {
+		return []int{median, greatest}
+	}
+	return []int{greatest}
+}
+
+// greatest is the position of the greatest percentile, -1 where there is none.
+func (a *PortfolioAnswer) greatest() int {
+	at := -1
+	for i, p := range a.Percentiles {
+		if at < 0 || p > a.Percentiles[at] {
+			at = i
+		}
+	}
+	return at
+}
+
+// columnsOfPortfolio are the quantities that a table shows, the last only with its greatest
+// percentile.
+var columnsOfPortfolio = []struct{ name, title string }{{"sd_m", "SD"}, {"base_shear_n", "shear"}, {"base_moment_nm", "moment"}}
+
+func (a *PortfolioAnswer) table(units Units) []byte {
+	t := table{columns: []column{{name: "structure", isWord: true}, {name: "period", unit: "s"}, {name: "damping"}, {name: "count"}}}
+	for _, c := range columnsOfPortfolio {
+		for _, i := range a.shown() {
+			name, _ := quantityUnits[c.name].in(units)
+			t.columns = append(t.columns, column{name: c.title + " p" + percentKey(a.Percentiles[i]), unit: name})
+		}
+	}
+	t.columns = append(t.columns, column{name: "ratio"}, column{name: "limit", isWord: true}, column{name: "above"}, column{name: "governing", isWord: true})
+	for i := range a.Rows {
+		t.add(a.tableRow(&a.Rows[i], units)...)
+	}
+	text := fmt.Appendf(nil, "Demand on %s, %s ordinates%s\n%s\n%s\n", countOf(len(a.Rows), "structure", "structures"), a.Ordinates,
+		a.envelopeWords(), a.Selection.heading(), a.Selection.methodLine())
+	return append(append(t.appendTo(text), '\n'), a.Remarks()...)
+}
+
+func (a *PortfolioAnswer) hasBand() bool {
+	return slices.ContainsFunc(a.Rows, func(r PortfolioRow) bool { return r.Band != nil })
+}
+
+// envelopeWords say what figures are of where periods are uncertain.
+func (a *PortfolioAnswer) envelopeWords() string {
+	if a.hasBand() {
+		return "; where the period is uncertain the largest of every motion over its band"
+	}
+	return ""
+}
+
+func (a *PortfolioAnswer) tableRow(row *PortfolioRow, units Units) []string {
+	s := row.Structure
+	displacement := row.quantity("sd_m", false)
+	cells := []string{s.ID, figure(s.PeriodS), percentText(s.Damping), fmt.Sprint(displacement.Count)}
+	for _, c := range columnsOfPortfolio {
+		_, per := quantityUnits[c.name].in(units)
+		x := row.quantity(c.name, true)
+		for _, i := range a.shown() {
+			cells = append(cells, percentileCell(x, i, per))
+		}
+	}
+	worst := row.worst(a.greatest())
+	return append(cells, figure(worst.ratio), worst.name, percentTitle(worst.above), a.Selection.governingText(displacement))
+}
+
+func percentileCell(x *Reduction, i int, per float64) string {
+	if i >= len(x.Percentiles) {
+		return "-"
+	}
+	if x.Count > 0 && math.IsNaN(x.Percentiles[i]) {
+		return "too few"
+	}
+	return figure(x.Percentiles[i] / per)
+}
+
+// quantity is the reduction of one quantity, of the band where there is one and it is asked
+// for; that of no motion where it is unknown.
+func (r *PortfolioRow) quantity(name string, overBand bool) *Reduction {
+	list := r.Quantities
+	if overBand && r.Band != nil {
+		list = r.Band.Quantities
+	}
+	for _, q := range list {
+		if q.Name == name && q.Reduction != nil {
+			return q.Reduction
+		}
+	}
+	nan := math.NaN()
+	return &Reduction{Mean: nan, LogMean: nan, LogStd: nan, Min: nan, Max: nan}
+}
+
+// worstLimit is the limit that the demand comes nearest to, or exceeds most.
+type worstLimit struct {
+	name         string
+	ratio, above float64
+}
+
+// worst takes the percentile of this position. Name is "-" and the ratio NaN where no
+// limit is given or the percentile is not supported.
+func (r *PortfolioRow) worst(percentile int) worstLimit {
+	worst := worstLimit{"-", math.NaN(), math.NaN()}
+	for _, l := range r.Limits {
+		if percentile < 0 || percentile >= len(l.Percentiles) {
+			continue
+		}
+		if x := l.Percentiles[percentile]; !(x <= worst.ratio) && isDefined(x) {
+			worst = worstLimit{l.Name, x, l.Above}
+		}
+	}
+	return worst
+}
+
+// in returns a quantity's unit and the value of one of it in the unit of answers.
+func (u quantityUnit) in(units Units) (name string, per float64) {
+	if units == UnitsUS {
+		return u.us, u.perUS
+	}
+	return u.si, u.perSI
+}
+
+// portfolioQuantities are the quantities of CSV files.
+var portfolioQuantities = []string{"sd_m", "psa_g", "base_shear_n", "base_moment_nm"}
+
+// limitNames are the limits of CSV files.
+var limitNames = []string{"displacement", "drift", "base_shear"}
+
+// csv has a row a structure.
+func (a *PortfolioAnswer) csv() []byte {
+	names := slices.Clone(portfolioQuantities)
+	if slices.ContainsFunc(a.Rows, func(r PortfolioRow) bool { return len(r.Structure.Modes) > 0 }) {
+		names = append(names, "base_shear_srss_n", "base_moment_srss_nm")
+	}
+	hasBand := a.hasBand()
+	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
+	var l csvLine
+	l.words("id", "name", "period_s", "damping", "mass_kg", "height_m", "modes", "count")
+	for _, prefix := range a.prefixes(names, hasBand) {
+		for i := range list {
+			l.word(prefix + "_" + list[i].csv)
+		}
+	}
+	l.words("band_from_s", "band_to_s")
+	for _, limit := range limitNames {
+		l.word(limit + "_limit")
+		for _, p := range a.Percentiles {
+			l.word(limit + "_ratio_p" + percentKey(p))
+		}
+		l.words(limit+"_ratio_max", limit+"_share_above")
+	}
+	l.words("ratio", "governing_limit")
+	l.words(a.Selection.csvGoverning()...)
+	l.end()
+	for i := range a.Rows {
+		a.csvRow(&l, &a.Rows[i], list, names, hasBand)
+	}
+	return l.text
+}
+
+func (a *PortfolioAnswer) prefixes(names []string, hasBand bool) []string {
+	out := slices.Clone(names)
+	if hasBand {
+		for _, name := range portfolioQuantities {
+			out = append(out, "band_"+name)
+		}
+	}
+	return out
+}
+
+func (a *PortfolioAnswer) csvRow(l *csvLine, row *PortfolioRow, list []statistic, names []string, hasBand bool) {
+	s := row.Structure
+	l.words(s.ID, s.Name)
+	l.number(s.PeriodS)
+	l.number(s.Damping)
+	l.number(orNaN(s.MassKG))
+	l.number(orNaN(s.HeightM))
+	l.integer(len(s.Modes))
+	displacement := row.quantity("sd_m", false)
+	l.integer(displacement.Count)
+	figures := func(q []Quantity, names []string) {
+		for _, name := range names {
+			x := reductionOf(q, name)
+			for i := range list {
+				if x == nil {
+					l.word("")
+				} else {
+					l.number(list[i].of(x))
+				}
+			}
+		}
+	}
+	figures(row.Quantities, names)
+	from, to := math.NaN(), math.NaN()
+	if hasBand {
+		var quantities []Quantity
+		if row.Band != nil {
+			quantities, from, to = row.Band.Quantities, row.Band.FromS, row.Band.ToS
+		}
+		figures(quantities, portfolioQuantities)
+	}
+	l.number(from)
+	l.number(to)
+	a.csvLimits(l, row)
+	l.word(displacement.Governing)
+	if a.Selection.hasRoles() {
+		l.word(displacement.GoverningComponent)
+	}
+	l.end()
+}
+
+func reductionOf(list []Quantity, name string) *Reduction {
+	for _, q := range list {
+		if q.Name == name {
+			return q.Reduction
+		}
+	}
+	return nil
+}
+
+func (a *PortfolioAnswer) csvLimits(l *csvLine, row *PortfolioRow) {
+	for _, name := range limitNames {
+		at := slices.IndexFunc(row.Limits, func(r LimitRatio) bool { return r.Name == name })
+		if at < 0 {
+			for range len(a.Percentiles) + 3 {
+				l.word("")
+			}
+			continue
+		}
+		limit := &row.Limits[at]
+		l.number(limit.Limit)
+		for _, x := range limit.Percentiles {
+			l.number(x)
+		}
+		l.number(limit.Max)
+		l.number(limit.Above)
+	}
+	worst := row.worst(a.greatest())
+	l.number(worst.ratio)
+	if worst.name == "-" {
+		worst.name = ""
+	}
+	l.word(worst.name)
+}
+
+func (a *PortfolioAnswer) object() object {
+	o := object{{"selection", a.Selection.object()}, {"ordinates", string(a.Ordinates)}, {"interpolation_error", nil}}
+	if e := a.Error; e != nil {
+		o[2].value = object{{"oscillators", e.Oscillators}, {"motions", e.Motions}, {"median", e.Median}, {"p95", e.P95}, {"max", e.Max}}
+	}
+	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
+	rows := make([]object, len(a.Rows))
+	for i := range a.Rows {
+		rows[i] = a.rowObject(&a.Rows[i], list)
+	}
+	return append(o, field{"structures", rows}, field{"caution", Caution})
+}
+
+func (a *PortfolioAnswer) rowObject(row *PortfolioRow, list []statistic) object {
+	s := row.Structure
+	worst := row.worst(a.greatest())
+	o := object{
+		{"id", s.ID}, {"name", s.Name}, {"period_s", s.PeriodS}, {"damping", s.Damping}, {"mass_kg", orNaN(s.MassKG)}, {"height_m", orNaN(s.HeightM)},
+		{"modes", len(s.Modes)}, {"quantities", a.Selection.quantitiesObject(list, row.Quantities)}, {"band", nil}, {"limits", a.limitsObject(row)},
+		{"ratio", worst.ratio}, {"governing_limit", nil},
+	}
+	if row.Band != nil {
+		o[8].value = a.Selection.bandObject(list, row.Band)
+	}
+	if worst.name != "-" {
+		o[11].value = worst.name
+	}
+	return o
+}
+
+func (a *PortfolioAnswer) limitsObject(row *PortfolioRow) object {
+	o := object{}
+	for _, l := range row.Limits {
+		ratios := object{}
+		for i, p := range a.Percentiles {
+			ratios = append(ratios, field{percentKey(p), l.Percentiles[i]})
+		}
+		o = append(o, field{l.Name, object{{"limit", l.Limit}, {"ratios", ratios}, {"max_ratio", l.Max}, {"share_above", l.Above}}})
+	}
+	return o
+}
