@@ -180,6 +180,9 @@ func queryDemandCommand() *cli.Command {
 			if c.IsSet("structures") {
 				return queryPortfolio(c)
 			}
+			if c.IsSet("ordinates") {
+				return usagef("--ordinates goes with --structures")
+			}
 			o, err := newDemandOptions(c)
 			if err != nil {
 				return err
