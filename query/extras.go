@@ -1,6 +1,8 @@
 package query
 
 import (
+	"cmp"
+	"fmt"
 	"math"
 	"slices"
 	"strings"
@@ -17,6 +19,7 @@ type Extras struct {
 	Spread    bool             // between and within events
 	Intervals bool             // of confidence, of each percentile
 	Lognormal bool             // the fitted distribution beside the percentiles
+	Bootstrap Bootstrap        // of a demand, by whole events
 	Level     float64          // of confidence; DefaultLevel where 0
 }
 
@@ -28,9 +31,10 @@ const (
 	extraSpread    = "spread"
 	extraIntervals = "intervals"
 	extraLognormal = "lognormal"
+	extraBootstrap = "bootstrap"
 )
 
-// ParseExtras reads a list of "spread", "intervals" and "lognormal". The empty text gives
+// ParseExtras reads a list of "spread", "intervals", "lognormal" and "bootstrap". The empty text gives
 // none.
 func ParseExtras(text string) (Extras, error) {
 	var e Extras
@@ -45,8 +49,11 @@ func ParseExtras(text string) (Extras, error) {
 			e.Intervals = true
 		case extraLognormal:
 			e.Lognormal = true
+		case extraBootstrap:
+			e.Bootstrap = Bootstrap{Resamples: DefaultResamples, Seed: 1}
 		default:
-			return e, usage("show", "unknown figures %q; accepted: %s", strings.TrimSpace(word), joinWords([]string{extraSpread, extraIntervals, extraLognormal}))
+			return e, usage("show", "unknown figures %q; accepted: %s", strings.TrimSpace(word),
+				joinWords([]string{extraSpread, extraIntervals, extraLognormal, extraBootstrap}))
 		}
 	}
 	return e, nil
@@ -76,7 +83,15 @@ func (e Extras) withDefaults() (Extras, error) {
 	if e.Level == 0 {
 		e.Level = DefaultLevel
 	}
-	return e, checkLevel(e.Level)
+	return e, cmp.Or(checkLevel(e.Level), e.Bootstrap.validate())
+}
+
+// ofOneStructure refuses what only a demand on one structure has.
+func (e Extras) ofOneStructure() error {
+	if !e.Bootstrap.isNone() {
+		return usage("show", "%s is of a demand on one structure", extraBootstrap)
+	}
+	return nil
 }
 
 // extraFigures are those of one reduction; nil where they were not asked for.
@@ -85,6 +100,7 @@ type extraFigures struct {
 	spread    *spread
 	intervals []interval // one a percentile
 	lognormal *lognormal
+	resampled *resampled
 }
 
 // interval holds a percentile of what the sample is drawn from with at least the level of
@@ -169,6 +185,9 @@ func (e Extras) statistics(percents []float64) (out []statistic) {
 	if e.Design != nil {
 		out = append(out, designStatistics()...)
 	}
+	if !e.Bootstrap.isNone() {
+		out = append(out, bootstrapStatistics(percents)...)
+	}
 	return out
 }
 
@@ -208,7 +227,9 @@ func lognormalStatistics(percents []float64) []statistic {
 }
 
 // isAny reports whether anything is asked for.
-func (e Extras) isAny() bool { return e.Design != nil || e.Spread || e.Intervals || e.Lognormal }
+func (e Extras) isAny() bool {
+	return e.Design != nil || e.Spread || e.Intervals || e.Lognormal || !e.Bootstrap.isNone()
+}
 
 // notes are sentences that belong to the figures.
 func (e Extras) notes(s *SelectionReport, damping float64) []string {
@@ -219,6 +240,9 @@ func (e Extras) notes(s *SelectionReport, damping float64) []string {
 		} else {
 			out = append(out, "intervals by order statistics are of percentiles that are not balanced")
 		}
+	}
+	if b := e.Bootstrap; !b.isNone() {
+		out = append(out, fmt.Sprintf("bootstrap: intervals of %s confidence over %d resamples by whole events, seed %d; too short where events are few", percentText(e.Level), b.Resamples, b.Seed))
 	}
 	if e.Design != nil {
 		out = append(out, "design spectrum "+e.Design.Name()+": "+e.Design.Words())

@@ -103,8 +103,10 @@ func (q PortfolioQuestion) withDefaults() (PortfolioQuestion, error) {
 	if len(q.Structures) == 0 {
 		return q, usage("structures", "there is none")
 	}
-	q.Extras, err = q.Extras.withDefaults()
-	return q, err
+	if q.Extras, err = q.Extras.withDefaults(); err != nil {
+		return q, err
+	}
+	return q, q.Extras.ofOneStructure()
 }
 
 func (q PortfolioQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*PortfolioAnswer, error) {

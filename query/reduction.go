@@ -149,6 +149,9 @@ func (r *reducer) addExtras(out *Reduction, values, sorted, weights []float64, l
 	if r.extras.Spread {
 		out.extra.spread = r.spread(values)
 	}
+	if !r.extras.Bootstrap.isNone() {
+		out.extra.resampled = r.bootstrap(out, values)
+	}
 	if r.extras.Design != nil {
 		out.extra.against = r.against(out, sorted, weights, scratch, level)
 	}

@@ -88,6 +88,9 @@ func (q SpectrumQuestion) withDefaults() (SpectrumQuestion, error) {
 	if q.Extras, err = q.Extras.withDefaults(); err != nil {
 		return q, err
 	}
+	if err := q.Extras.ofOneStructure(); err != nil {
+		return q, err
+	}
 	if err := cmp.Or(q.Band.validate(), q.By.validate()); err != nil {
 		return q, err
 	}

@@ -46,7 +46,7 @@ func statisticsFlags() []cli.Flag {
 		&cli.StringFlag{Name: "screen", Value: "normal", Usage: "leave out for what was found of quality: strict, normal or none"},
 		&cli.StringFlag{Name: "by", Usage: "the same statistics group by group too: an `ATTRIBUTE` such as event, station or site_class_en1998, or a number with edges of bins, magnitude:5,6,7"},
 		&cli.StringFlag{Name: "design", Usage: "set the design spectrum that a TOML `FILE` describes beside the motions"},
-		&cli.StringFlag{Name: "show", Usage: "further figures, a `LIST` of spread (between and within events), intervals (of confidence, of each percentile) and lognormal (the fitted distribution)"},
+		&cli.StringFlag{Name: "show", Usage: "further figures, a `LIST` of spread (between and within events), intervals (of confidence, of each percentile), lognormal (the fitted distribution) and, of one structure, bootstrap"},
 		&cli.StringFlag{Name: "confidence", Value: "90%", Usage: "level of confidence of intervals"},
 		&cli.StringFlag{Name: "balance", Value: "none", Usage: "weigh motions so that every event, or every station, counts once: none, event or station"},
 		&cli.StringFlag{Name: "damping", Value: "5%", Usage: "damping ratio, such as 5% or 0.05"},
@@ -142,6 +142,21 @@ func newExtras(e *query.Extras, c *cli.Context) error {
 		parseInto(&e.Design, c, "design", query.ReadDesign))
 }
 
+// setBootstrap reads the flags of a bootstrap that is asked for.
+func setBootstrap(b *query.Bootstrap, c *cli.Context) error {
+	if b.Resamples == 0 {
+		if c.IsSet("resamples") || c.IsSet("seed") {
+			return usagef("--resamples and --seed go with --show bootstrap")
+		}
+		return nil
+	}
+	*b = query.Bootstrap{Resamples: c.Int("resamples"), Seed: c.Uint64("seed")}
+	if b.Resamples == 0 {
+		return usagef("--resamples 0: --show bootstrap needs some")
+	}
+	return nil
+}
+
 // parseInto reads a flag's text into dst.
 func parseInto[T any](dst *T, c *cli.Context, flag string, parse func(string) (T, error)) (err error) {
 	*dst, err = parse(c.String(flag))
@@ -172,6 +187,8 @@ func queryDemandCommand() *cli.Command {
 			&cli.StringFlag{Name: "mass", Usage: "mass, such as 52000kg or 52t"},
 			&cli.StringFlag{Name: "height", Usage: "height of the mass above the base, such as 6m or 20ft"},
 			&cli.StringFlag{Name: "band", Usage: "show the envelope over T·(1±BAND) too, such as 10%"},
+			&cli.IntFlag{Name: "resamples", Value: query.DefaultResamples, Usage: "of the bootstrap"},
+			&cli.Uint64Flag{Name: "seed", Value: 1, Usage: "of the bootstrap's random numbers"},
 			&cli.StringFlag{Name: "structures", Usage: "instead of one structure those of a CSV or TOML `FILE`, a row each"},
 			&cli.StringFlag{Name: "ordinates", Value: "exact", Usage: "with --structures: exact, or grid, interpolated between stored ones"},
 			formatFlag("table, csv or json"),
@@ -214,6 +231,7 @@ func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
 		parseInto(&q.By, c, "by", query.ParseGrouping),
 		newExtras(&q.Extras, c),
+		setBootstrap(&q.Bootstrap, c),
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&q.BandWidth, c, "band", query.ParseBandWidth),
 		parseInto(&o.units, c, "units", query.ParseUnits),
