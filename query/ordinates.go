@@ -52,16 +52,18 @@ func (o *ordinates) without(motions map[int]string) *ordinates {
 // Measure is the quantity of a spectrum.
 type Measure string
 
-// Spectral displacement in m, pseudo-velocity in m/s, pseudo-acceleration in g, and the
-// ratio of the vertical spectrum to the horizontal one, which is that of all three.
+// Spectral displacement in m, pseudo-velocity in m/s, pseudo-acceleration in g, and two
+// ratios, which are those of all three: of the vertical spectrum to the horizontal one, and
+// of the spectrum to that of 5 % damping.
 const (
 	MeasureSD  Measure = "sd"
 	MeasurePSV Measure = "psv"
 	MeasurePSA Measure = "psa"
 	MeasureVH  Measure = "vh"
+	MeasureEta Measure = "eta"
 )
 
-// ParseMeasure reads "sd", "psv", "psa" or "vh". The empty text gives MeasurePSA.
+// ParseMeasure reads "sd", "psv", "psa", "vh" or "eta". The empty text gives MeasurePSA.
 func ParseMeasure(text string) (Measure, error) {
 	if text == "" {
 		return MeasurePSA, nil
@@ -71,11 +73,14 @@ func ParseMeasure(text string) (Measure, error) {
 }
 
 func (m Measure) validate() error {
-	if m == MeasureSD || m == MeasurePSV || m == MeasurePSA || m == MeasureVH {
+	if m == MeasureSD || m == MeasurePSV || m == MeasurePSA || m.isRatio() {
 		return nil
 	}
-	return usage("measure", "unknown measure %q; accepted: sd, psv, psa, vh", string(m))
+	return usage("measure", "unknown measure %q; accepted: sd, psv, psa, vh, eta", string(m))
 }
+
+// isRatio reports whether the measure is a ratio of spectra.
+func (m Measure) isRatio() bool { return m == MeasureVH || m == MeasureEta }
 
 // omega is 2π/T, the number that the store keeps beside each period.
 func omega(periodS float64) float64 { return 2 * math.Pi / periodS }

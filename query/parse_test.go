@@ -194,7 +194,7 @@ func TestWords(t *testing.T) {
 		t.Errorf("ParseMeasure of nothing = %q, %v", m, err)
 	}
 	_, err = ParseMeasure("pga")
-	checkUsage(t, "measure", err, `measure: unknown measure "pga"; accepted: sd, psv, psa, vh`)
+	checkUsage(t, "measure", err, `measure: unknown measure "pga"; accepted: sd, psv, psa, vh, eta`)
 	_, err = ParseUnits("metric")
 	checkUsage(t, "units", err, `units: unknown units "metric"; accepted: si, us`)
 	_, err = ParseFormat("csv", FormatTable, FormatJSON)

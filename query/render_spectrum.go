@@ -17,7 +17,7 @@ func (m Measure) unitOf(u Units) (name, suffix string, per float64) {
 	switch {
 	case m == MeasurePSA:
 		return "g", "g", 1
-	case m == MeasureVH:
+	case m.isRatio():
 		return "1", "ratio", 1
 	case m == MeasurePSV && us:
 		return "in/s", "in_s", metresPerInch
@@ -38,6 +38,8 @@ func (m Measure) title() string {
 		return "Pseudo-acceleration PSA"
 	case MeasureVH:
 		return "Vertical over horizontal spectrum V/H"
+	case MeasureEta:
+		return "Spectrum over that of 5% damping"
 	}
 	return "Spectral displacement SD"
 }
@@ -91,7 +93,7 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 		t.add(append(row, a.Selection.governingText(r))...)
 	})
 	in := " in " + unit
-	if a.Measure == MeasureVH {
+	if a.Measure.isRatio() {
 		in = "" // a number
 	}
 	text := fmt.Appendf(nil, "%s%s, damping %s\n%s\n%s\n", a.Measure.title(), in, percentText(a.Damping),
@@ -137,7 +139,11 @@ func (r *SelectionReport) governingText(x *Reduction) string {
 }
 
 func (a *SpectrumAnswer) statistics() []statistic {
-	return statisticsOf(&a.Selection, a.Percentiles, a.Extras)
+	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
+	if a.Measure == MeasureEta {
+		list = append(list, etaStatistic(a.Damping))
+	}
+	return list
 }
 
 func (a *SpectrumAnswer) csv(units Units) []byte {

@@ -79,7 +79,7 @@ func (q SpectrumQuestion) withDefaults() (SpectrumQuestion, error) {
 	if len(q.PeriodsS) > 0 && q.Band != (Band{}) {
 		return q, usage("band", "a list of periods and a band exclude each other; give one")
 	}
-	if q.Measure == MeasureVH && q.Design != nil {
+	if q.Measure.isRatio() && q.Design != nil {
 		return q, usage("design", "a ratio of spectra has no design spectrum")
 	}
 	if q.Percentiles, err = checkPercentiles(q.Percentiles); err != nil {
@@ -130,7 +130,11 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	}
 	s := source{snapshot: snapshot, method: q.Method}
 	oscillators := dampedBy(q.Damping, periods)
-	picked, err := pick(ctx, snapshot, q.Selection, s.details(oscillators)|q.By.details())
+	details := s.details(oscillators) | q.By.details()
+	if q.Measure == MeasureEta {
+		details |= s.details(dampedBy(usualDamping, periods))
+	}
+	picked, err := pick(ctx, snapshot, q.Selection, details)
 	if err != nil {
 		return nil, err
 	}
@@ -138,10 +142,14 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 	if err != nil {
 		return nil, err
 	}
-	if q.Measure == MeasureVH {
-		if loaded, err = s.overHorizontal(ctx, picked, loaded); err != nil {
-			return nil, err
-		}
+	switch q.Measure {
+	case MeasureVH:
+		loaded, err = s.overHorizontal(ctx, picked, loaded)
+	case MeasureEta:
+		loaded, err = s.overUsualDamping(ctx, picked, loaded)
+	}
+	if err != nil {
+		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
 	picked.report.Notes = append(picked.report.Notes, q.Extras.notes(&picked.report, q.Damping)...)

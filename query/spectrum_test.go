@@ -179,7 +179,7 @@ func TestSpectrumMistakes(t *testing.T) {
 	}{
 		{SpectrumQuestion{Damping: 1}, "damping: 1 is 100% of critical; it must be at least 0 and less than 1, written 5% or 0.05"},
 		{SpectrumQuestion{Damping: math.NaN()}, "damping: NaN is NaN% of critical; it must be at least 0 and less than 1, written 5% or 0.05"},
-		{SpectrumQuestion{Measure: "sa"}, `measure: unknown measure "sa"; accepted: sd, psv, psa, vh`},
+		{SpectrumQuestion{Measure: "sa"}, `measure: unknown measure "sa"; accepted: sd, psv, psa, vh, eta`},
 		{SpectrumQuestion{Selection: Selection{Component: "all"}}, `component: unknown component "all"; accepted here: rotd50, rotd100, geomean, larger, each, h1, h2, v`},
 		{SpectrumQuestion{Selection: Selection{Siting: "moon"}}, `siting: unknown siting "moon"; accepted: ground, free-field, structure, borehole, unknown, all`},
 		{SpectrumQuestion{Percentiles: []float64{-1}}, "percentiles: -1 is outside 0 to 100"},

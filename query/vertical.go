@@ -39,18 +39,24 @@ func (s *source) overHorizontal(ctx context.Context, p *picked, horizontal *ordi
 			unfit[i] = reason
 		}
 	}
-	known := make([]bool, len(verticals))
-	for k, sd := range horizontal.sd {
-		horizontal.sd[k] = vertical.sd[k] / sd
-		if math.IsInf(horizontal.sd[k], 0) {
-			horizontal.sd[k] = math.NaN() // a horizontal of rest
+	return vertical.over(horizontal, p, unfit)
+}
+
+// over divides ordinates by others of the same motions and oscillators, and leaves out the
+// unfit and those that have no ratio.
+func (o *ordinates) over(below *ordinates, p *picked, unfit map[int]string) (*ordinates, error) {
+	known := make([]bool, o.motions)
+	for k, sd := range below.sd {
+		o.sd[k] /= sd
+		if math.IsInf(o.sd[k], 0) {
+			o.sd[k] = math.NaN() // over rest
 		}
-		known[k%len(verticals)] = known[k%len(verticals)] || !math.IsNaN(horizontal.sd[k])
+		known[k%o.motions] = known[k%o.motions] || !math.IsNaN(o.sd[k])
 	}
 	for i, isKnown := range known {
 		if _, isOut := unfit[i]; !isKnown && !isOut {
 			unfit[i] = reasonUnusable
 		}
 	}
-	return horizontal.without(unfit), p.leaveOut(unfit)
+	return o.without(unfit), p.leaveOut(unfit)
 }

@@ -94,7 +94,7 @@ func querySpectrumCommand() *cli.Command {
 		Name:  "spectrum",
 		Usage: "statistics of the response spectra of recorded motions, period by period",
 		Flags: append(statisticsFlags(),
-			&cli.StringFlag{Name: "measure", Usage: "sd, psv, psa, or vh, the vertical spectrum over the horizontal one (default: psa)"},
+			&cli.StringFlag{Name: "measure", Usage: "sd, psv, psa, vh (the vertical spectrum over the horizontal one) or eta (the spectrum over that of 5% damping) (default: psa)"},
 			&cli.StringFlag{Name: "band", Usage: "periods of the grid to show, `FROM:TO` in s"},
 			&cli.StringFlag{Name: "periods", Usage: "periods to show instead of the grid's, a `LIST` in s; computed from the samples where off the grid"},
 			formatFlag("table, csv or json"),
