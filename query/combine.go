@@ -2,48 +2,43 @@ package query
 
 import (
 	"math"
-	"slices"
 
+	"swaybook/query/design"
 	"swaybook/query/modal"
 )
 
-// combined reduces what the motions demand of a structure of several modes. Displacement
-// and PSA are those of the first mode. Base shear and moment of mode i,
+// eachCombined gives of the motions at these places what they demand of a structure of
+// several modes. Displacement and PSA are those of the first mode. Base shear and moment of
+// mode i,
 //
 //	V = r·m·A    M = V·h
 //
 // of its participating share r of the mass m and its effective height h, are combined
-// motion by motion, by the square root of the sum of squares (SRSS) and by complete
-// quadratic combination (CQC), and the combinations reduced.
+// motion by motion, by complete quadratic combination (CQC) and by the square root of the
+// sum of squares (SRSS).
 //
 // Source: A. K. Chopra, Dynamics of Structures, 4th ed., Prentice Hall 2012, sections 13.7
 // and 13.8 (cited from memory).
-func (p *plan) combined(r *reducer, o *ordinates, also func(name string, x *Reduction)) []Quantity {
+func (p *plan) eachCombined(o *ordinates, at []int, d *design.Spectrum, give forEach) {
 	s := p.structure
 	first := Structure{PeriodS: s.PeriodS, Damping: s.Damping}
-	out := first.reduce(r, o, p.at[:1], also)
-	out = slices.DeleteFunc(out, func(q Quantity) bool { return q.Reduction == nil || q.Name == "psv_m_s" })
+	first.each(o, p.at[:1], at, d, func(name string, values []float64, level float64) {
+		if name == "sd_m" || name == "psa_g" {
+			give(name, values, level)
+		}
+	})
 	rho := s.correlation()
+	cqc := func(peaks []float64) float64 { return modal.CQC(peaks, rho) }
 	for _, c := range []struct {
 		name     string
 		isMoment bool
 		combine  func([]float64) float64
 	}{
-		{"base_shear_n", false, func(v []float64) float64 { return modal.CQC(v, rho) }},
-		{"base_shear_srss_n", false, modal.SRSS},
-		{"base_moment_nm", true, func(v []float64) float64 { return modal.CQC(v, rho) }},
-		{"base_moment_srss_nm", true, modal.SRSS},
+		{"base_shear_n", false, cqc}, {"base_shear_srss_n", false, modal.SRSS},
+		{"base_moment_nm", true, cqc}, {"base_moment_srss_nm", true, modal.SRSS},
 	} {
-		quantity := Quantity{Name: c.name}
-		values := p.combine(r, o, c.isMoment, c.combine)
-		if slices.ContainsFunc(values, isDefined) {
-			x := r.reduce(values, math.NaN())
-			quantity.Reduction = &x
-			also(c.name, &x)
-		}
-		out = append(out, quantity)
+		give(c.name, p.combine(o, at, c.isMoment, c.combine), math.NaN())
 	}
-	return out
 }
 
 // correlation are the CQC coefficients of the modes.
@@ -55,8 +50,8 @@ func (s *PortfolioStructure) correlation() modal.Matrix {
 	return modal.Correlation(periods, dampings)
 }
 
-// combine gives one value a motion of the sample, NaN where a mode has none.
-func (p *plan) combine(r *reducer, o *ordinates, isMoment bool, combine func([]float64) float64) []float64 {
+// combine gives one value a motion, NaN where a mode has none.
+func (p *plan) combine(o *ordinates, at []int, isMoment bool, combine func([]float64) float64) []float64 {
 	s := p.structure
 	factors := make([]float64, len(s.Modes)) // of SD in m
 	for i, m := range s.Modes {
@@ -66,8 +61,8 @@ func (p *plan) combine(r *reducer, o *ordinates, isMoment bool, combine func([]f
 			factors[i] *= orNaN(m.HeightM)
 		}
 	}
-	values, peaks := make([]float64, len(r.at)), make([]float64, len(s.Modes))
-	for k, motion := range r.at {
+	values, peaks := make([]float64, len(at)), make([]float64, len(s.Modes))
+	for k, motion := range at {
 		values[k] = 0
 		for i := range s.Modes {
 			peaks[i] = factors[i] * o.at(p.at[i])[motion]

@@ -8,6 +8,7 @@ import (
 	"slices"
 
 	"swaybook/db"
+	"swaybook/query/design"
 )
 
 // DemandQuestion asks what the motions of a selection demand of a structure.
@@ -149,14 +150,15 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 // band.
 func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int) ([]Quantity, *DemandBand) {
 	r := newReducer(s, q.Percentiles, q.Extras)
-	quantities := q.Structure.reduce(r, o, []int{at}, nil)
+	var quantities []Quantity
+	q.Structure.each(o, []int{at}, s.at, q.Design, r.reducing(&quantities, nil))
 	if q.BandWidth == 0 {
 		return quantities, nil
 	}
 	last := len(o.oscillators) - 1
-	return quantities, &DemandBand{
-		FromS: o.oscillators[0].PeriodS, ToS: o.oscillators[last].PeriodS, Quantities: q.Structure.reduce(r, o, upTo(last+1), nil),
-	}
+	band := &DemandBand{FromS: o.oscillators[0].PeriodS, ToS: o.oscillators[last].PeriodS}
+	q.Structure.each(o, upTo(last+1), s.at, q.Design, r.reducing(&band.Quantities, nil))
+	return quantities, band
 }
 
 // bandPeriods returns the structure's period and, where there is a band of this half-width,
@@ -194,36 +196,46 @@ func decimal(x float64) *big.Rat {
 	return r
 }
 
-// reduce takes of every motion the largest value over the oscillators of these positions
-// and reduces these, quantity by quantity. With each of them it calls also, where that is
-// not nil.
-func (s *Structure) reduce(r *reducer, o *ordinates, positions []int, also func(name string, x *Reduction)) []Quantity {
-	out := make([]Quantity, len(demandQuantities))
-	values := make([]float64, len(r.at))
-	for i, quantity := range demandQuantities {
-		out[i].Name = quantity.name
+// forEach is given one quantity after another: its value of each motion, valid until the
+// next call, and that of the design spectrum, NaN for none.
+type forEach func(name string, values []float64, level float64)
+
+// each gives of the motions at these places the largest values over the oscillators of
+// these positions.
+func (s *Structure) each(o *ordinates, positions, at []int, d *design.Spectrum, give forEach) {
+	values := make([]float64, len(at))
+	for _, quantity := range demandQuantities {
 		level := math.NaN()
 		for first, p := range positions {
 			periodS, sd := o.oscillators[p].PeriodS, o.at(p)
 			w, isFirst := omega(periodS), first == 0
-			if x := quantity.of(s, designSD(r.extras.Design, periodS, s.Damping), w); isEnvelope(x, level, isFirst) {
+			if x := quantity.of(s, designSD(d, periodS, s.Damping), w); isEnvelope(x, level, isFirst) {
 				level = x
 			}
-			for k, at := range r.at {
+			for k, at := range at {
 				if x := quantity.of(s, sd[at], w); isEnvelope(x, values[k], isFirst) {
 					values[k] = x
 				}
 			}
 		}
+		give(quantity.name, values, level)
+	}
+}
+
+// reducing returns a forEach that appends the reduction of each quantity to out and, where
+// also is not nil, calls that with it.
+func (r *reducer) reducing(out *[]Quantity, also func(name string, x *Reduction)) forEach {
+	return func(name string, values []float64, level float64) {
+		q := Quantity{Name: name}
 		if slices.ContainsFunc(values, isDefined) {
-			reduction := r.reduce(values, level)
-			out[i].Reduction = &reduction
+			x := r.reduce(values, level)
+			q.Reduction = &x
 			if also != nil {
-				also(quantity.name, &reduction)
+				also(name, &x)
 			}
 		}
+		*out = append(*out, q)
 	}
-	return out
 }
 
 // isEnvelope reports whether x takes the place of the largest value so far. What has no

@@ -276,14 +276,16 @@ func (p *plan) demand(r *reducer, o *ordinates) PortfolioRow {
 	s := p.structure
 	row := PortfolioRow{Structure: s}
 	compare := func(name string, x *Reduction) { row.Limits = append(row.Limits, s.compare(r, name, x)...) }
+	d := r.extras.Design
 	switch {
 	case len(s.Modes) > 0:
-		row.Quantities = p.combined(r, o, compare)
+		p.eachCombined(o, r.at, d, r.reducing(&row.Quantities, compare))
 	case s.BandWidth > 0:
-		row.Quantities = s.reduce(r, o, p.at[:1], nil)
-		row.Band = &DemandBand{FromS: p.band.FromS, ToS: p.band.ToS, Quantities: s.reduce(r, o, p.at[1:], compare)}
+		s.each(o, p.at[:1], r.at, d, r.reducing(&row.Quantities, nil))
+		row.Band = &DemandBand{FromS: p.band.FromS, ToS: p.band.ToS}
+		s.each(o, p.at[1:], r.at, d, r.reducing(&row.Band.Quantities, compare))
 	default:
-		row.Quantities = s.reduce(r, o, p.at[:1], compare)
+		s.each(o, p.at[:1], r.at, d, r.reducing(&row.Quantities, compare))
 	}
 	return row
 }
