@@ -88,7 +88,7 @@ func placeVersion(ctx context.Context, tx *db.Tx, r db.StoredRecord, res result,
 		if !isSameVersion(r, res, c) {
 			continue
 		}
-		_, rival := join(r, c)
+		_, rival := join(r, res, c)
 		switch {
 		case rival == nil:
 		case isAmended(rival, res.source) || hasNoDirection(rival, c) || n > maxVersions:
@@ -100,7 +100,7 @@ func placeVersion(ctx context.Context, tx *db.Tx, r db.StoredRecord, res result,
 		found.add(&version, rival, res, c)
 	}
 	to := found.chosen()
-	p, rival = join(to, c)
+	p, rival = join(to, res, c)
 	if found.parted != nil {
 		p = bringAlong(*found.parted, to, res, c, p)
 	}
@@ -143,113 +143,6 @@ func (f *versionsFound) chosen() db.StoredRecord {
 		return *f.lone
 	}
 	return db.StoredRecord{Code: f.free}
-}
-
-// How near to a file another one lies of which a record holds components.
-const (
-	elsewhere   = iota
-	inOneFolder // of one archive
-	ofOneStem   // with names that differ in the direction only
-	inOneFile
-)
-
-// nearness is that of the nearest component.
-func nearness(components []db.Component, res result) int {
-	near := elsewhere
-	for i := range components {
-		near = max(near, nearnessOf(&components[i], res))
-	}
-	return near
-}
-
-func nearnessOf(c *db.Component, res result) int {
-	switch {
-	case c.SourcePath == res.source.Path:
-		return inOneFile
-	case archive.Folder(c.SourcePath) != archive.Folder(res.source.Path):
-		return elsewhere
-	case baseStem(memberStem(c.SourcePath)) == baseStem(res.stem):
-		return ofOneStem
-	}
-	return inOneFolder
-}
-
-// baseStem is the part of a stem that the components of one record share.
-func baseStem(stem string) string {
-	base, _ := ingest.SplitStem(stem)
-	return base
-}
-
-// memberStem is the stem of a file, or of a member of an archive.
-func memberStem(file string) string {
-	parts := archive.Split(file)
-	return stemOf(parts[len(parts)-1])
-}
-
-// nearestOf is the nearness beyond which nothing can be for a channel of the file.
-func nearestOf(res result) int {
-	if len(res.channels) > 1 {
-		return inOneFile
-	}
-	return ofOneStem
-}
-
-// hasOthers reports whether some lie elsewhere.
-func hasOthers(components []db.Component, res result) bool {
-	return slices.ContainsFunc(components, func(c db.Component) bool { return nearnessOf(&c, res) == elsewhere })
-}
-
-// areLone reports whether the channel and each of the record's components are the only one
-// of their deliveries, and all of them say when they start or none does.
-func areLone(r *db.StoredRecord, res result, c *ingest.Channel) bool {
-	folders := map[string]bool{}
-	for _, held := range r.Components {
-		folders[archive.Folder(held.SourcePath)] = true
-	}
-	return len(res.channels) == 1 && len(folders) == len(r.Components) && r.Start.IsZero() == c.Start.IsZero()
-}
-
-// bringAlong lets what came with the channel c leave the record in which another has c's
-// direction, for the record to which c goes as p says, unless that has no place for it.
-func bringAlong(parted, to db.StoredRecord, res result, c *ingest.Channel, p placement) placement {
-	least := inOneFolder
-	if _, rival := join(parted, c); rival != nil {
-		least = nearnessOf(rival, res) + 1
-	}
-	var leaves, stays []db.Component
-	from := departure{recordID: parted.ID}
-	for i, held := range parted.Components {
-		if nearnessOf(&parted.Components[i], res) < least {
-			stays = append(stays, held)
-			continue
-		}
-		leaves = append(leaves, held)
-		from.paths = append(from.paths, held.SourcePath)
-	}
-	together := append(orientationsOf(to.Components), orientationsOf(leaves)...)
-	roles := ingest.AssignRoles(append(together, c.Orientation))
-	if slices.Contains(roles, "") {
-		return p
-	}
-	p.renamed = renamed(to.Components, roles)
-	from.moved = map[string]string{}
-	for i, held := range leaves {
-		from.moved[held.Role] = roles[len(to.Components)+i]
-	}
-	p.role, p.from = roles[len(roles)-1], &from
-	from.renamed = renamed(stays, ingest.AssignRoles(orientationsOf(stays)))
-	return p
-}
-
-// renamed says which components have other roles now.
-func renamed(components []db.Component, roles []string) map[string]string {
-	out := map[string]string{}
-	for i, held := range components {
-		if held.Role != roles[i] {
-			out[held.Role] = roles[i]
-		}
-	}
-	return out
 }
 
 // isSameVersion reports whether the channel can stand beside what the record holds:
@@ -348,16 +241,15 @@ func startsApart(a, b time.Time) bool {
 }
 
 // join gives the channel a role beside the record's components, or returns the
-// component that has its direction.
-func join(r db.StoredRecord, c *ingest.Channel) (placement, *db.Component) {
+// component that stands in its way: the one that has its direction, or of two other
+// horizontals the one that lies farther from the file.
+func join(r db.StoredRecord, res result, c *ingest.Channel) (placement, *db.Component) {
 	if rival := sameDirection(r.Components, c.Orientation); rival != nil {
 		return placement{}, rival
 	}
 	roles := ingest.AssignRoles(append(orientationsOf(r.Components), c.Orientation))
-	for i, role := range roles {
-		if role == "" {
-			return placement{}, &r.Components[min(i, len(r.Components)-1)]
-		}
+	if i := slices.Index(roles, ""); i >= 0 {
+		return placement{}, farthest(r.Components, min(i, len(r.Components)-1), res)
 	}
 	return placement{code: r.Code, newRecord: r.ID == 0, role: roles[len(roles)-1], renamed: renamed(r.Components, roles)}, nil
 }
@@ -378,4 +270,15 @@ func sameDirection(components []db.Component, o ingest.Orientation) *db.Componen
 		}
 	}
 	return nil
+}
+
+// renamed says which components have other roles now.
+func renamed(components []db.Component, roles []string) map[string]string {
+	out := map[string]string{}
+	for i, held := range components {
+		if held.Role != roles[i] {
+			out[held.Role] = roles[i]
+		}
+	}
+	return out
 }

@@ -126,7 +126,7 @@ func TestPlaceTogether(t *testing.T) {
 	noon := time.Date(2026, 3, 12, 12, 0, 0, 0, time.UTC)
 	north, east, up := at(horizontal(0), "", noon), at(horizontal(90), "", noon), at(vertical, "", noon)
 	single := func(paths ...string) (out []delivery) {
-		direction := map[byte]ingest.Channel{'N': north, 'E': east, 'Z': up}
+		direction := map[byte]ingest.Channel{'N': north, 'E': east, 'Z': up, 'T': at(horizontal(10), "", noon), 'W': at(horizontal(280), "", noon)}
 		for _, p := range paths {
 			out = append(out, delivery{p, []ingest.Channel{direction[p[len(p)-1]]}})
 		}
@@ -145,13 +145,17 @@ func TestPlaceTogether(t *testing.T) {
 	}{
 		{"two folders, one lacks a horizontal", single("x/N", "y/N", "y/E", "y/Z"), "[x/N] [y/E y/N y/Z]"},
 		{"three folders that lack something", single("x/N", "x/E", "y/E", "y/Z", "z/N", "z/Z"), "[x/E x/N] [y/E y/Z] [z/N z/Z]"},
+		{"a pair, and a lone one in line with its first", single("x/N", "y/T", "y/W"), "[x/N] [y/T y/W]"},
+		{"a pair, and a lone one in line with its second", single("x/E", "y/T", "y/W"), "[x/E] [y/T y/W]"},
+		{"two pairs in line", single("x/N", "x/E", "y/T", "y/W"), "[x/E x/N] [y/T y/W]"},
+		{"lone ones in line", single("x/N", "y/T"), "[x/N] [y/T]"},
 		{"a folder for each direction", single("N/N", "E/E", "Z/Z"), "[E/E N/N Z/Z]"},
 		{"two in one folder", single("x/a_N", "x/a_E", "x/b_N", "x/b_E"), "[x/a_E x/a_N] [x/b_E x/b_N]"},
 		{"one that states no start, and a later one", append(append(single("x/N", "x/E"), unstarted...), later...), "[x/E x/N] [y/E y/N] [z/Z]"},
 		{"files of a folder", []delivery{{"x/one", []ingest.Channel{east}}, {"x/all", []ingest.Channel{north, east, up}}}, "[x/all x/all x/all] [x/one]"},
 		{"a file, and single ones", append(single("x/Z"), delivery{"x/both", []ingest.Channel{north, east}}, single("y/E")[0]), "[x/Z x/both x/both] [y/E]"},
 	} {
-		for range 8 {
+		for range 12 {
 			rand.Shuffle(len(tt.files), func(i, j int) { tt.files[i], tt.files[j] = tt.files[j], tt.files[i] })
 			if got := together(t, tt.files); got != tt.want {
 				t.Errorf("%s in the order %v: %s, want %s", tt.name, tt.files, got, tt.want)
