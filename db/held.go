@@ -38,7 +38,7 @@ type Details uint
 // What can be asked for.
 const (
 	DetailRecord   Details = 1 << iota // the rest of Record
-	DetailMotion                       // Axis, AzimuthDeg, StepS and Start
+	DetailMotion                       // Axis, AzimuthDeg, StepS, Samples and Start
 	DetailPeaks                        // Peaks
 	DetailBand                         // StepS, LowCutHz, HighCutHz and Conditioning
 	DetailMeasures                     // Measures
@@ -302,8 +302,8 @@ func orNaN(x *float64) float64 {
 func (v *componentRow) columns(d Details) (names string, into []any) {
 	names, into = `c.record_id, c.role`, []any{&v.RecordID, &v.Role}
 	if d&DetailMotion != 0 {
-		names += `, c.axis, c.azimuth_deg, c.step_s, coalesce(c.start_at, '')`
-		into = append(into, &v.Axis, &v.AzimuthDeg, &v.StepS, &v.start)
+		names += `, c.axis, c.azimuth_deg, c.step_s, c.samples, coalesce(c.start_at, '')`
+		into = append(into, &v.Axis, &v.AzimuthDeg, &v.StepS, &v.Samples, &v.start)
 	}
 	if d&DetailBand != 0 {
 		names += `, c.step_s, c.low_cut_hz, c.high_cut_hz`

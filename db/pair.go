@@ -19,6 +19,7 @@ type Pair struct {
 type PairComponent struct {
 	ID           int64
 	StepS        float64
+	Samples      int
 	AzimuthDeg   float64 // where known
 	AzimuthKnown bool
 	Start        time.Time // UTC; zero where unknown
@@ -41,8 +42,8 @@ func (t *Tx) IsUnrotated(ctx context.Context, generationID int64, p Pair) (bool,
 // an index and all that there is to do in a store that is complete.
 func unrotated(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Pair, error) {
 	rows, err := q.QueryContext(ctx, `SELECT r.id, r.code,
-			a.id, a.step_s, coalesce(a.azimuth_deg, 0), a.azimuth_deg IS NOT NULL, coalesce(a.start_at, ''),
-			b.id, b.step_s, coalesce(b.azimuth_deg, 0), b.azimuth_deg IS NOT NULL, coalesce(b.start_at, '')
+			a.id, a.step_s, a.samples, coalesce(a.azimuth_deg, 0), a.azimuth_deg IS NOT NULL, coalesce(a.start_at, ''),
+			b.id, b.step_s, b.samples, coalesce(b.azimuth_deg, 0), b.azimuth_deg IS NOT NULL, coalesce(b.start_at, '')
 		FROM record r
 		CROSS JOIN component a ON a.record_id = r.id AND a.role = '`+RoleH1+`'
 		CROSS JOIN component b ON b.record_id = r.id AND b.role = '`+RoleH2+`'
@@ -58,7 +59,7 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 	}
 	found, err := collect(rows, func(v *row) []any {
 		a, b := &v.First, &v.Second
-		return []any{&v.RecordID, &v.Code, &a.ID, &a.StepS, &a.AzimuthDeg, &a.AzimuthKnown, &v.first, &b.ID, &b.StepS, &b.AzimuthDeg, &b.AzimuthKnown, &v.second}
+		return []any{&v.RecordID, &v.Code, &a.ID, &a.StepS, &a.Samples, &a.AzimuthDeg, &a.AzimuthKnown, &v.first, &b.ID, &b.StepS, &b.Samples, &b.AzimuthDeg, &b.AzimuthKnown, &v.second}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)

@@ -52,7 +52,7 @@ func putRotated(t *testing.T, s *Store, g Generation, recordID int64, base float
 func TestUnrotatedPairs(t *testing.T) {
 	s, g := pairStore(t)
 	pairs := unrotatedOf(t, s, g)
-	want := Pair{RecordID: 2, Code: "R1", First: PairComponent{4, 0.01, 30, true, startsAt}, Second: PairComponent{2, 0.01, 30, true, startsAt}}
+	want := Pair{RecordID: 2, Code: "R1", First: PairComponent{4, 0.01, 100, 30, true, startsAt}, Second: PairComponent{2, 0.01, 100, 30, true, startsAt}}
 	if len(pairs) != 1 || pairs[0] != want {
 		t.Fatalf("unrotated = %+v, want %+v alone", pairs, want)
 	}

@@ -85,7 +85,7 @@ func areInLine(a, b ingest.Orientation) bool {
 	between := func(o ingest.Orientation) spectrum.Horizontal {
 		return spectrum.Horizontal{AzimuthDeg: o.AzimuthDeg.Value, AzimuthKnown: o.AzimuthDeg.Known}
 	}
-	_, _, err := spectrum.Between(between(a), between(b))
+	_, err := spectrum.Between(between(a), between(b))
 	return err != nil
 }
 

@@ -51,7 +51,7 @@ func (w *writer) rotate(ctx context.Context) error {
 
 func countRotatable(pairs []db.Pair) (n int) {
 	for _, p := range pairs {
-		if _, _, err := spectrum.Between(horizontalOf(p.First), horizontalOf(p.Second)); err == nil {
+		if _, err := spectrum.Between(horizontalOf(p.First), horizontalOf(p.Second)); err == nil {
 			n++
 		}
 	}
@@ -79,17 +79,17 @@ type rotator struct {
 // or the context's.
 func (r *rotator) process(ctx context.Context, p db.Pair) (rotation, error) {
 	rot := rotation{pair: p}
-	deg, assumed, err := spectrum.Between(horizontalOf(p.First), horizontalOf(p.Second))
+	relation, err := spectrum.Between(horizontalOf(p.First), horizontalOf(p.Second))
 	if err != nil {
 		return rot.failed(err), ctx.Err()
 	}
-	rot.assumed = assumed
+	rot.assumed = relation.Assumed
 	first, second, err := r.store.ReadPair(ctx, r.run.generation, p)
 	if err != nil {
 		return rot, err
 	}
 	err = survive(func() error {
-		rot.median, rot.maximum, err = r.run.reader.computer.rotate(deg, first, second)
+		rot.median, rot.maximum, err = r.run.reader.computer.rotate(relation, first, second)
 		return err
 	})
 	if err != nil {
@@ -99,7 +99,7 @@ func (r *rotator) process(ctx context.Context, p db.Pair) (rotation, error) {
 }
 
 func horizontalOf(c db.PairComponent) spectrum.Horizontal {
-	return spectrum.Horizontal{StepS: c.StepS, AzimuthDeg: c.AzimuthDeg, AzimuthKnown: c.AzimuthKnown, Start: c.Start}
+	return spectrum.Horizontal{StepS: c.StepS, Samples: c.Samples, AzimuthDeg: c.AzimuthDeg, AzimuthKnown: c.AzimuthKnown, Start: c.Start}
 }
 
 // failed is the rotation with the reason why there is none.
@@ -120,7 +120,7 @@ func (rot rotation) failed(err error) rotation {
 
 // rotate computes the rotated spectra and measures of a pair of equal steps, each
 // component conditioned as for its own.
-func (c *computer) rotate(betweenDeg float64, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
+func (c *computer) rotate(relation spectrum.Relation, first, second db.StoredMotion) (median, maximum db.Spectra, err error) {
 	a, sdA, err := c.solved(first)
 	if err != nil {
 		return median, maximum, err
@@ -134,7 +134,7 @@ func (c *computer) rotate(betweenDeg float64, first, second db.StoredMotion) (me
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}
-	pair := spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b), betweenDeg)
+	pair := spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b)+relation.Later(stepS), relation.Deg)
 	if pair.ChangedA {
 		sdA = solver.SD(nil, pair.A)
 	}

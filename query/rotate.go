@@ -17,18 +17,17 @@ func (m *motion) isAssumed() bool {
 	if !m.isRotated() {
 		return false
 	}
-	_, assumed, _ := between(m.members[0], m.members[1])
-	return assumed
+	relation, _ := between(m.members[0], m.members[1])
+	return relation.Assumed
 }
 
-// between is the angle in degrees from the first component to the second, by the
-// rule of ingest.
-func between(first, second *db.HeldComponent) (deg float64, assumed bool, err error) {
+// between is how the second component lies to the first, by the rule of ingest.
+func between(first, second *db.HeldComponent) (spectrum.Relation, error) {
 	return spectrum.Between(horizontal(first), horizontal(second))
 }
 
 func horizontal(c *db.HeldComponent) spectrum.Horizontal {
-	h := spectrum.Horizontal{StepS: c.StepS, Start: c.Start}
+	h := spectrum.Horizontal{StepS: c.StepS, Samples: c.Samples, Start: c.Start}
 	if c.AzimuthDeg != nil {
 		h.AzimuthDeg, h.AzimuthKnown = *c.AzimuthDeg, true
 	}
@@ -37,7 +36,7 @@ func horizontal(c *db.HeldComponent) spectrum.Horizontal {
 
 // notRotatable says why two horizontals cannot be rotated, "" where they can.
 func notRotatable(first, second *db.HeldComponent) string {
-	_, _, err := between(first, second)
+	_, err := between(first, second)
 	if e, ok := errors.AsType[*spectrum.PairError](err); ok {
 		return e.Reason
 	}
@@ -47,7 +46,7 @@ func notRotatable(first, second *db.HeldComponent) string {
 // pairSamples reads two horizontals that can be rotated and makes them fit for
 // it, at steps of stepS.
 func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (p spectrum.Pair, stepS float64, err error) {
-	deg, _, err := between(first, second)
+	relation, err := between(first, second)
 	if err != nil {
 		return p, 0, err
 	}
@@ -59,7 +58,7 @@ func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.H
 	if err != nil {
 		return p, 0, err
 	}
-	return spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b), deg), a.StepS, nil
+	return spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b)+relation.Later(a.StepS), relation.Deg), a.StepS, nil
 }
 
 // findRotated notes peaks of rotated pairs. For ComponentAll these are all that

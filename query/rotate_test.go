@@ -44,6 +44,8 @@ func TestRotatedIsComputed(t *testing.T) {
 		"oblique":  {pulses("oblique", inventedComponent{peak: 3, azimuthDeg: 10}, inventedComponent{peak: 3*cos60 + 4*sin60, azimuthDeg: 70}), 3, 4, false},
 		"unknown":  {pulses("unknown", inventedComponent{peak: 1, azimuthDeg: unknown}, inventedComponent{peak: 3, azimuthDeg: 17}), 1, 3, true},
 		"shorter":  {pulses("shorter", inventedComponent{peak: 4}, inventedComponent{peak: 1, isShort: true}), 4, 1, false},
+		"later":    {pulses("later", inventedComponent{peak: 4, isTimed: true, ahead: 37}, inventedComponent{peak: 1, isTimed: true}), 4, 1, false},
+		"earlier":  {pulses("earlier", inventedComponent{peak: 3, isTimed: true, ahead: 2, azimuthDeg: 10}, inventedComponent{peak: 3*cos60 + 4*sin60, isTimed: true, ahead: 9, azimuthDeg: 70}), 3, 4, false},
 	}
 	questions := map[string]SpectrumQuestion{
 		"not stored": {Damping: 0.02, PeriodsS: []float64{math.Pi}},

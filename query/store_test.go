@@ -55,6 +55,8 @@ type inventedComponent struct {
 	// azimuthDeg is that of a horizontal, NaN where unknown; 0: by the role.
 	azimuthDeg float64
 	isShort    bool // ends with the pulse
+	isTimed    bool // says when it starts: the pulse at noon, and it so many samples before
+	ahead      int
 }
 
 func ptr[T any](x T) *T { return &x }
@@ -177,6 +179,9 @@ func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64
 	default:
 		component.AzimuthDeg = ptr(c.azimuthDeg)
 	}
+	if c.isTimed {
+		component.Start = time.Date(2026, 3, 12, 12, 0, 0, 0, time.UTC).Add(-time.Duration(float64(c.ahead) * c.step() * 1e9))
+	}
 	if c.axis != "" {
 		component.Axis = c.axis
 	}
@@ -207,7 +212,7 @@ func (c inventedComponent) samples() []float64 {
 			out[i] = peak * math.Sin(2*math.Pi*t)
 		}
 	}
-	return out
+	return append(make([]float64, c.ahead), out...)
 }
 
 // spectra also sets PGA to level·g, PGV to level m/s and PGD to level m.

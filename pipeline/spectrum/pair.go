@@ -14,14 +14,31 @@ const rightAngleDeg = 1e-9
 // for a pair: below it errors of the components are more than doubled.
 const minSine = 0.5
 
-// Horizontal is what decides, beside the samples, whether a horizontal component
-// can be rotated with another one.
+// furthestApart is how far apart the first samples of two components may be. Recorders
+// start all channels together; what was cut into files or packets of its own may begin
+// some seconds apart. The limit is ours.
+const furthestApart = 10 * time.Second
+
+// Horizontal is what decides, beside the values of the samples, whether a horizontal
+// component can be rotated with another one.
 type Horizontal struct {
 	StepS        float64 // s between samples
+	Samples      int
 	AzimuthDeg   float64 // degrees clockwise from north
 	AzimuthKnown bool
 	Start        time.Time // of the first sample; zero where unknown
 }
+
+// Relation is how a second component lies to a first one.
+type Relation struct {
+	Deg     float64 // from the first to the second
+	Assumed bool    // Deg is a right angle that nobody stated
+	LaterS  float64 // s, whole steps, from the start of the first to that of the second; 0 where one is unknown
+}
+
+// Later is by how many samples at steps of stepS, which go into the components' own a whole
+// number of times, the second component starts later.
+func (r Relation) Later(stepS float64) int { return int(math.Round(r.LaterS / stepS)) }
 
 // The reasons of a PairError.
 const (
@@ -37,27 +54,47 @@ type PairError struct{ Reason, Detail string }
 // Error returns "reason: particulars".
 func (e *PairError) Error() string { return e.Reason + ": " + e.Detail }
 
-// Between returns the angle in degrees from the first component to the second, as
-// NewPair takes it. Where an azimuth is unknown a right angle is assumed. The
-// error is a *PairError where the two cannot be rotated together.
-func Between(first, second Horizontal) (deg float64, assumed bool, err error) {
+// Between returns how the second component lies to the first. Where an azimuth is unknown
+// a right angle is assumed. Starts are taken to be a whole number of steps apart, since half
+// a step may be rounding of what headers say. The error is a *PairError where the two cannot
+// be rotated together.
+func Between(first, second Horizontal) (Relation, error) {
 	if first.StepS != second.StepS {
-		return 0, false, &PairError{ReasonSteps, fmt.Sprintf("%g s and %g s", first.StepS, second.StepS)}
+		return Relation{}, &PairError{ReasonSteps, fmt.Sprintf("%g s and %g s", first.StepS, second.StepS)}
 	}
-	if !first.Start.IsZero() && !second.Start.IsZero() {
-		// Half a step may be rounding of what headers say.
-		if apart := second.Start.Sub(first.Start).Abs(); apart.Seconds() > 0.5*first.StepS {
-			return 0, false, &PairError{ReasonStarts, fmt.Sprintf("%v apart", apart)}
-		}
+	laterS, err := startsLater(first, second)
+	if err != nil {
+		return Relation{}, err
 	}
 	if !first.AzimuthKnown || !second.AzimuthKnown {
-		return 90, true, nil
+		return Relation{Deg: 90, Assumed: true, LaterS: laterS}, nil
 	}
-	deg = second.AzimuthDeg - first.AzimuthDeg
+	deg := second.AzimuthDeg - first.AzimuthDeg
 	if sin, _ := sinCosBetween(deg); !(math.Abs(sin) >= minSine) {
-		return 0, false, &PairError{ReasonDirections, fmt.Sprintf("azimuths %g° and %g°", first.AzimuthDeg, second.AzimuthDeg)}
+		return Relation{}, &PairError{ReasonDirections, fmt.Sprintf("azimuths %g° and %g°", first.AzimuthDeg, second.AzimuthDeg)}
 	}
-	return deg, false, nil
+	return Relation{Deg: deg, LaterS: laterS}, nil
+}
+
+// startsLater is the time in s, rounded to whole steps, from the start of the first
+// component to that of the second.
+func startsLater(first, second Horizontal) (float64, error) {
+	if first.Start.IsZero() || second.Start.IsZero() {
+		return 0, nil
+	}
+	apart := second.Start.Sub(first.Start)
+	if apart.Abs().Seconds() <= 0.5*first.StepS {
+		return 0, nil
+	}
+	earlier := first
+	if apart < 0 {
+		earlier = second
+	}
+	steps := math.Ceil(apart.Abs().Seconds()/first.StepS - 0.5)
+	if apart.Abs() > furthestApart || steps >= float64(earlier.Samples) {
+		return 0, &PairError{ReasonStarts, fmt.Sprintf("%v apart", apart.Abs())}
+	}
+	return math.Copysign(float64(steps*first.StepS), apart.Seconds()), nil
 }
 
 // Pair is two horizontal components that are fit for RotD and RotDPeaks: of equal
@@ -117,12 +154,12 @@ func turnedUpright(first, second []float64, betweenDeg float64) []float64 {
 func sinCosBetween(deg float64) (sin, cos float64) { return math.Sincos(deg * math.Pi / 180) }
 
 // Peaks is RotDPeaks of the pair, but that PGV and PGD are taken where both
-// components have samples. A velocity that a component has at its end is one of
-// its baseline as a rule, and would carry the ground away for as long as the other
-// goes on.
+// components have samples, unless that is nowhere, as where a recipe keeps a part of
+// each. A velocity that a component has at its end is one of its baseline as a rule, and
+// would carry the ground away for as long as the other goes on.
 func (p Pair) Peaks(stepS float64) (rotd50, rotd100 GroundPeaks) {
 	rotd50, rotd100 = RotDPeaks(stepS, p.A, p.B)
-	if p.to-p.from == len(p.A) {
+	if p.to-p.from == len(p.A) || p.to == p.from {
 		return rotd50, rotd100
 	}
 	median, maximum := RotDPeaks(stepS, p.A[p.from:p.to], p.B[p.from:p.to])

@@ -66,7 +66,9 @@ func TestPairRefusesNearDirections(t *testing.T) {
 
 // TestBetween: the angle, and each reason why there is none.
 func TestBetween(t *testing.T) {
-	at := func(deg float64) Horizontal { return Horizontal{StepS: 0.01, AzimuthDeg: deg, AzimuthKnown: true} }
+	at := func(deg float64) Horizontal {
+		return Horizontal{StepS: 0.01, Samples: 3000, AzimuthDeg: deg, AzimuthKnown: true}
+	}
 	unknown := Horizontal{StepS: 0.01}
 	started := func(seconds float64) Horizontal {
 		h := at(90)
@@ -75,33 +77,41 @@ func TestBetween(t *testing.T) {
 	}
 	north := started(0)
 	north.AzimuthDeg = 0
+	brief := north
+	brief.Samples = 700
 	tests := []struct {
 		name          string
 		first, second Horizontal
-		deg           float64
-		assumed       bool
+		want          Relation
 		reason        string // "" where they can be rotated
 		detail        string
 	}{
-		{"right angle", at(10), at(100), 90, false, "", ""},
-		{"the other way round", at(350), at(260), -90, false, "", ""},
-		{"through north", at(350), at(80), -270, false, "", ""},
-		{"oblique", at(10), at(70), 60, false, "", ""},
-		{"first unknown", unknown, at(100), 90, true, "", ""},
-		{"second unknown", at(100), unknown, 90, true, "", ""},
-		{"near", at(10), at(30), 0, false, ReasonDirections, "azimuths 10° and 30°"},
-		{"opposite", at(10), at(190), 0, false, ReasonDirections, "azimuths 10° and 190°"},
-		{"no number", at(10), at(math.NaN()), 0, false, ReasonDirections, "azimuths 10° and NaN°"},
-		{"starts half a step apart", north, started(0.005), 90, false, "", ""},
-		{"starts half a step apart, the other way round", north, started(-0.005), 90, false, "", ""},
-		{"one start unknown", at(0), started(7), 90, false, "", ""},
-		{"starts more apart", north, started(0.0051), 0, false, ReasonStarts, "5.1ms apart"},
-		{"starts more apart, the other way round", north, started(-0.5), 0, false, ReasonStarts, "500ms apart"},
-		{"steps, before all else", at(10), Horizontal{StepS: 0.02}, 0, false, ReasonSteps, "0.01 s and 0.02 s"},
+		{"right angle", at(10), at(100), Relation{Deg: 90}, "", ""},
+		{"the other way round", at(350), at(260), Relation{Deg: -90}, "", ""},
+		{"through north", at(350), at(80), Relation{Deg: -270}, "", ""},
+		{"oblique", at(10), at(70), Relation{Deg: 60}, "", ""},
+		{"first unknown", unknown, at(100), Relation{Deg: 90, Assumed: true}, "", ""},
+		{"second unknown", at(100), unknown, Relation{Deg: 90, Assumed: true}, "", ""},
+		{"near", at(10), at(30), Relation{}, ReasonDirections, "azimuths 10° and 30°"},
+		{"opposite", at(10), at(190), Relation{}, ReasonDirections, "azimuths 10° and 190°"},
+		{"no number", at(10), at(math.NaN()), Relation{}, ReasonDirections, "azimuths 10° and NaN°"},
+		{"starts half a step apart", north, started(0.005), Relation{Deg: 90}, "", ""},
+		{"starts half a step apart, the other way round", north, started(-0.005), Relation{Deg: 90}, "", ""},
+		{"one start unknown", at(0), started(7), Relation{Deg: 90}, "", ""},
+		{"starts more apart", north, started(0.0051), Relation{Deg: 90, LaterS: 0.01}, "", ""},
+		{"starts a step and a half apart", north, started(0.015), Relation{Deg: 90, LaterS: 0.01}, "", ""},
+		{"starts more apart, the other way round", north, started(-0.508), Relation{Deg: 90, LaterS: -0.51}, "", ""},
+		{"starts at the limit", north, started(10), Relation{Deg: 90, LaterS: 10}, "", ""},
+		{"starts beyond the limit", north, started(10.001), Relation{}, ReasonStarts, "10.001s apart"},
+		{"starts beyond the limit, the other way round", north, started(-10.001), Relation{}, ReasonStarts, "10.001s apart"},
+		{"starts with the last sample", brief, started(6.99), Relation{Deg: 90, LaterS: 6.99}, "", ""},
+		{"starts after the last sample", brief, started(7), Relation{}, ReasonStarts, "7s apart"},
+		{"ends long before, the other way round", started(7), brief, Relation{}, ReasonStarts, "7s apart"},
+		{"steps, before all else", at(10), Horizontal{StepS: 0.02}, Relation{}, ReasonSteps, "0.01 s and 0.02 s"},
 	}
 	for _, test := range tests {
 		t.Run(test.name, func(t *testing.T) {
-			deg, assumed, err := Between(test.first, test.second)
+			got, err := Between(test.first, test.second)
 			var pairError *PairError
 			if errors.As(err, &pairError) != (test.reason != "") {
 				t.Fatalf("error %v, want reason %q", err, test.reason)
@@ -109,10 +119,43 @@ func TestBetween(t *testing.T) {
 			if pairError != nil && *pairError != (PairError{test.reason, test.detail}) {
 				t.Errorf("error %v, want %s: %s", err, test.reason, test.detail)
 			}
-			if deg != test.deg || assumed != test.assumed {
-				t.Errorf("Between = %g, %v, want %g, %v", deg, assumed, test.deg, test.assumed)
+			if got != test.want {
+				t.Errorf("Between = %+v, want %+v", got, test.want)
 			}
 		})
+	}
+}
+
+// TestPairOnOneClock: what begins later is preceded by zeros, whatever comes first, and PGV
+// and PGD are of what is common.
+func TestPairOnOneClock(t *testing.T) {
+	x, y := shaken(1, 60), shaken(2, 50)
+	shifted := append(make([]float64, 20), y...) // 60 of x, 20 to 70 of y
+	long := append(slices.Clone(x), make([]float64, 10)...)
+	for _, p := range []Pair{NewPair(x, y, 20, 90), NewPair(y, x, -20, 90)} {
+		a, b := p.A, p.B
+		if !slices.Equal(a, long) {
+			a, b = b, a
+		}
+		if !slices.Equal(a, long) || !slices.Equal(b, shifted) || !p.ChangedA || !p.ChangedB {
+			t.Errorf("not on one clock: %v and %v, changed %v and %v", a, b, p.ChangedA, p.ChangedB)
+		}
+		median, maximum := p.Peaks(0.01)
+		whole50, whole100 := RotDPeaks(0.01, p.A, p.B)
+		common50, common100 := RotDPeaks(0.01, p.A[20:60], p.B[20:60])
+		common50.PGA, common100.PGA = whole50.PGA, whole100.PGA
+		if median != common50 || maximum != common100 {
+			t.Errorf("peaks %+v and %+v, want %+v and %+v", median, maximum, common50, common100)
+		}
+	}
+	for stepS, want := range map[float64]int{0.01: -7, 0.005: -14, 0.0025: -28} { // as delivered, and oversampled
+		if got := (Relation{LaterS: -0.07}).Later(stepS); got != want {
+			t.Errorf("%d samples of %g s, want %d", got, stepS, want)
+		}
+	}
+	apart := NewPair(x, y, 100, 90)
+	if median, maximum := apart.Peaks(0.01); maximum.PGV == 0 || median.PGA == 0 {
+		t.Errorf("nothing in common: peaks %+v and %+v", median, maximum)
 	}
 }
 
