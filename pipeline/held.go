@@ -1,9 +1,11 @@
 package pipeline
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"math"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -56,9 +58,56 @@ func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.Held
 		return err
 	}
 	c.Event.Origin = asStated(own).Origin
-	accounts, doubt := metadataAccounts(w.opts.Hints.Metadata, &c, held.Samples)
+	quakes, err := tx.Quakes(ctx, key.EventID)
+	if err != nil {
+		return err
+	}
+	accounts, _, doubt := metadataAccounts(w.opts.Hints.Metadata, withHeld(w.opts.Hints.Metadata, quakes), &c, held.Samples)
 	w.doubt(path, doubt, held.RecordID)
+	if q := quakeIn(accounts); q != nil && len(withoutMetadata(own)) == 0 && isOfAnother(c.Event.ID, quakes, accounts) {
+		if key, err = w.moveToQuake(ctx, tx, held, c, q); err != nil {
+			return err
+		}
+	}
 	return w.settler.state(ctx, key, accounts)
+}
+
+// withHeld are the events of the documents at hand and those whose waves came by documents
+// of former runs, by time.
+func withHeld(m *ingest.Metadata, held []db.Quake) []ingest.CatalogueEvent {
+	out := slices.Clone(m.Events())
+	for i, h := range held {
+		if _, ok := m.Event(h.PublicID); ok || !h.Came || m.Withdraws(h.PublicID, h.Created) {
+			continue
+		}
+		e := ingest.CatalogueEvent{PublicID: h.PublicID, Created: h.Created, Event: quakeAccount(&held[i]).channel.Event}
+		e.ID = h.Code
+		out = append(out, e)
+	}
+	slices.SortFunc(out, func(a, b ingest.CatalogueEvent) int {
+		return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
+	})
+	return out
+}
+
+// isOfAnother reports whether an event has its code of a QuakeML event that is not among
+// those of the accounts: of another earthquake.
+func isOfAnother(code string, held []db.Quake, accounts []account) bool {
+	return slices.ContainsFunc(held, func(h db.Quake) bool {
+		return h.Code == code && !slices.ContainsFunc(accounts, func(a account) bool {
+			return slices.ContainsFunc(a.quakes, func(q ingest.CatalogueEvent) bool { return q.PublicID == h.PublicID })
+		})
+	})
+}
+
+// moveToQuake gives a held record, of channel c, the QuakeML event q for its event.
+func (w *writer) moveToQuake(ctx context.Context, tx *db.Tx, held db.HeldComponent, c ingest.Channel, q *ingest.CatalogueEvent) (db.RecordKey, error) {
+	c.Event = q.Event
+	if err := w.settler.distinguish(ctx, &c, q); err != nil {
+		return db.RecordKey{}, err
+	}
+	w.settler.touched[db.Subject{Kind: db.SubjectEvent, ID: held.Record.EventID}] = true
+	return tx.PutRecord(ctx, recordOf(c, held.Record.Code), true)
 }
 
 // redescribe stores what the catalogue states of a held component of a file.

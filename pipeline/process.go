@@ -160,11 +160,14 @@ func (r *reader) tell(file ingest.Found, format, stem string, c *ingest.Channel)
 	header := *c
 	s := solved{accounts: []account{{by: db.ByHeader, source: file.Path, scheme: schemeOf(format, header.Station.Network), channel: withoutSamples(header)}}}
 	s.stated, s.matched = r.describe(file, stem, c)
-	accounts, doubt := metadataAccounts(r.hints.Metadata, c, len(c.Acceleration))
+	accounts, remark, doubt := metadataAccounts(r.hints.Metadata, r.hints.Metadata.Events(), c, len(c.Acceleration))
 	if q := quakeIn(accounts); q != nil && isWithoutEvent(c) {
 		*c, s.quake = header, q
 		c.Event = q.Event
 		s.stated, s.matched = r.describe(file, stem, c)
+	}
+	if remark != "" {
+		c.Warnings = append(c.Warnings, remark)
 	}
 	s.accounts, s.doubt = append(s.accounts, accounts...), doubt
 	if s.matched {

@@ -2,7 +2,6 @@ package pipeline
 
 import (
 	"context"
-	"fmt"
 	"math"
 	"slices"
 	"time"
@@ -11,78 +10,23 @@ import (
 	"swaybook/ingest"
 )
 
-// The velocities between which the strong part of a ground motion travels, in km/s:
-// that of P waves in the crust and upper mantle is below the first, surface waves are
-// slower than S waves, but not than the second.
-//
-// No source defines them; they are common practice.
-const (
-	fastestKMS = 8.0
-	slowestKMS = 2.5
-)
-
-// metadataAccounts are what StationXML and QuakeML say of a channel of so many
-// samples. A channel that states no origin time may be of the QuakeML event whose waves
-// came while it recorded. Of any other, the QuakeML event is found by what all its files
-// state (settler.quake). doubt says why none of several was taken.
-func metadataAccounts(m *ingest.Metadata, c *ingest.Channel, samples int) (accounts []account, doubt string) {
-	if m.IsEmpty() {
-		return nil, ""
-	}
-	said := account{by: db.ByMetadata, source: "metadata"}
-	station, ok := m.Station(c)
-	said.channel.Station = station
-	if c.Event.Origin.IsZero() {
-		came := arriving(m.Events(), c, samples, station)
-		switch {
-		case len(came) == 1:
-			ok, said.quake = true, &came[0]
-		case len(came) > 1:
-			doubt = fmt.Sprintf("the waves of %d QuakeML events came while it recorded, none of which is taken: %s", len(came), namesOf(came))
-		}
-	}
-	if !ok {
-		return nil, doubt
-	}
-	return []account{said}, doubt
-}
-
-// quakeIn returns the QuakeML event whose waves came, nil for none.
-func quakeIn(accounts []account) *ingest.CatalogueEvent {
-	for _, a := range accounts {
-		if a.quake != nil {
-			return a.quake
-		}
-	}
-	return nil
-}
-
-// namesOf names the first of several events.
-func namesOf(events []ingest.CatalogueEvent) string {
-	const most = 4
-	var out string
-	for i, e := range events {
-		if i == most {
-			return out + ", …"
-		}
-		if i > 0 {
-			out += ", "
-		}
-		out += fmt.Sprintf("%.80s (%s)", e.PublicID, e.Origin.UTC().Format("2006-01-02T15:04:05Z"))
-	}
-	return out
-}
-
-// isWithoutEvent reports whether a channel says nothing of its earthquake.
-func isWithoutEvent(c *ingest.Channel) bool {
-	return c.Event.ID == "" && c.Event.Name == "" && c.Event.Origin.IsZero()
-}
-
 // asStated is what catalogue and headers state of an event, without what metadata do.
 func asStated(own []db.Statement) db.Event { return takenOf(withoutMetadata(own)).event() }
 
 func withoutMetadata(own []db.Statement) []db.Statement {
 	return slices.DeleteFunc(slices.Clone(own), func(st db.Statement) bool { return st.By == db.ByMetadata })
+}
+
+// putQuakes stores that the waves of these came while a record of the event ran.
+func (s *settler) putQuakes(ctx context.Context, eventID int64, quakes []ingest.CatalogueEvent) error {
+	for _, e := range quakes {
+		q := quakeOf(e)
+		q.Came = true
+		if err := s.putQuake(ctx, eventID, q); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 // putQuake stores that q may be the event, or what is the later version of it.
@@ -208,25 +152,43 @@ func quakeOf(e ingest.CatalogueEvent) db.Quake {
 }
 
 // chosen returns the QuakeML event that an event of the store is: the nearest to what
-// is stated of it; where no time is, of those whose waves came the one that gave the
-// event its code, or else the first. It is nil where there is none.
+// is stated of it; where no time is, the first account of the earthquake whose waves came.
+// It is nil where there is none.
 func chosen(quakes []db.Quake, as *statedEvent) *db.Quake {
+	if as.Origin.IsZero() {
+		return chosenOfCame(quakes, as.EventKey.Code)
+	}
 	var best *db.Quake
 	least := math.Inf(1)
 	for i := range quakes {
 		q := &quakes[i]
-		d, same := difference(as, &statedEvent{Event: q.Event})
-		if as.Origin.IsZero() {
-			d, same = 1, q.Came
-			if q.Code == as.EventKey.Code {
-				d = 0
-			}
-		}
-		if same && (d < least || d == least && q.PublicID < best.PublicID) {
+		if d, same := difference(as, &statedEvent{Event: q.Event}); same && (d < least || d == least && q.PublicID < best.PublicID) {
 			best, least = q, d
 		}
 	}
 	return best
+}
+
+// chosenOfCame is chosen among those whose waves came. Of several earthquakes it is the one
+// that gave the event its code, else the one that is larger than the others, else the first.
+func chosenOfCame(quakes []db.Quake, code string) *db.Quake {
+	var came []db.Quake
+	for _, q := range quakes {
+		if q.Came {
+			came = append(came, q)
+		}
+	}
+	all := earthquakes(came)
+	if len(all) == 0 {
+		return nil
+	}
+	at := slices.IndexFunc(all, func(one []int) bool {
+		return slices.ContainsFunc(one, func(i int) bool { return came[i].Code == code })
+	})
+	if at < 0 {
+		at = max(0, largest(all, func(i int) *float64 { return came[i].Magnitude }))
+	}
+	return &came[all[at][0]]
 }
 
 // stateQuake makes the statements of metadata those of q, nil for none.
@@ -259,7 +221,7 @@ func (s *settler) stateQuake(ctx context.Context, of db.Subject, own []db.Statem
 
 // quakeAccount is what a QuakeML event says.
 func quakeAccount(q *db.Quake) account {
-	return account{by: db.ByMetadata, source: q.PublicID, scheme: "metadata", channel: ingest.Channel{Event: ingest.Event{
+	return account{by: db.ByMetadata, source: q.PublicID, scheme: schemeOfQuakes(q.PublicID), channel: ingest.Channel{Event: ingest.Event{
 		ID: q.PublicID, Name: q.Name, Origin: q.Origin, Latitude: number(q.LatitudeDeg), Longitude: number(q.LongitudeDeg),
 		DepthKM: number(q.DepthKM), Magnitude: number(q.Magnitude), MagnitudeType: q.MagnitudeType,
 	}}}
@@ -280,29 +242,3 @@ func statedOf(e ingest.Event) statedEvent {
 		Origin: e.Origin, LatitudeDeg: pointer(e.Latitude), LongitudeDeg: pointer(e.Longitude), Magnitude: pointer(e.Magnitude),
 	}}
 }
-
-// furthestKM is how far an earthquake is looked for: beyond, strong-motion
-// instruments record few, and their waves take longer than the windows of records.
-const furthestKM = 1000
-
-// arriving returns the events the waves of which came between the first and the last
-// sample of the channel, by time. Of several, nothing says which.
-func arriving(events []ingest.CatalogueEvent, c *ingest.Channel, samples int, station ingest.Station) []ingest.CatalogueEvent {
-	lat, lon := c.Station.Latitude.Or(station.Latitude), c.Station.Longitude.Or(station.Longitude)
-	if c.Start.IsZero() || !lat.Known || !lon.Known {
-		return nil
-	}
-	end := c.Start.Add(seconds(float64(samples-1) * c.StepS))
-	var came []ingest.CatalogueEvent
-	for _, e := range around(events, c.Start, seconds(furthestKM/slowestKMS), end.Sub(c.Start)) {
-		depth := e.DepthKM.Value
-		km := math.Hypot(epicentralKM(lat.Value, lon.Value, e.Latitude.Value, e.Longitude.Value), depth)
-		first, last := e.Origin.Add(seconds(km/fastestKMS)), e.Origin.Add(seconds(km/slowestKMS))
-		if km <= furthestKM && !last.Before(c.Start) && !first.After(end) {
-			came = append(came, e)
-		}
-	}
-	return came
-}
-
-func seconds(s float64) time.Duration { return time.Duration(s * float64(time.Second)) }

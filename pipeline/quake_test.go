@@ -195,7 +195,7 @@ func TestEqualCodesOfTwoQuakes(t *testing.T) {
 			err = errors.Join(err, s.distinguish(t.Context(), &c, &quakes[i]))
 			a := header(fmt.Sprint("R", n), fmt.Sprint(n), c.Event, ingest.Station{})
 			return errors.Join(err, a.put(t.Context(), tx, s, g),
-				s.state(t.Context(), db.RecordKey{ID: int64(n + 1), EventID: int64(i + 1)}, []account{{by: db.ByMetadata, quake: &quakes[i]}}), s.settle(t.Context()))
+				s.state(t.Context(), db.RecordKey{ID: int64(n + 1), EventID: int64(i + 1)}, []account{{by: db.ByMetadata, quakes: quakes[i : i+1]}}), s.settle(t.Context()))
 		})
 		if err != nil {
 			t.Fatal(err)
@@ -276,7 +276,7 @@ func putOf(ctx context.Context, tx *db.Tx, s *settler, g db.Generation, n int, b
 		said.scheme = "esm"
 	case db.ByMetadata:
 		c.Event, given = quake.Event, quake
-		said = account{by: by, source: "metadata", quake: quake}
+		said = account{by: by, source: "metadata", quakes: []ingest.CatalogueEvent{*quake}}
 	}
 	if err := s.distinguish(ctx, &c, given); err != nil {
 		return err

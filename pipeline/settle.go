@@ -37,10 +37,8 @@ func (s *settler) state(ctx context.Context, k db.RecordKey, accounts []account)
 		s.seen[k.EventID] = true
 	}
 	for _, a := range accounts {
-		if a.quake != nil && k.EventID != 0 {
-			q := quakeOf(*a.quake)
-			q.Came = true
-			if err := s.putQuake(ctx, k.EventID, q); err != nil {
+		if k.EventID != 0 {
+			if err := s.putQuakes(ctx, k.EventID, a.quakes); err != nil {
 				return err
 			}
 		}

@@ -15,7 +15,7 @@ type account struct {
 	source  string
 	scheme  string // of the event's identifier: identifiers of one scheme tell earthquakes apart
 	channel ingest.Channel
-	quake   *ingest.CatalogueEvent // the only one whose waves came while the channel recorded
+	quakes  []ingest.CatalogueEvent // accounts of the one whose waves came while the channel recorded
 }
 
 // statements are what the account says, of the subjects with these ids.
