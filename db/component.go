@@ -179,14 +179,29 @@ func (t *Tx) FindTrigger(ctx context.Context, base string, at time.Time, toleran
 }
 
 func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT c.role, c.axis, c.label, c.rank, c.azimuth_deg, c.channel, c.step_s, c.samples, c.processing, s.path, s.sha256, s.format
+	rows, err := t.tx.QueryContext(ctx, `SELECT c.role, c.axis, c.label, c.rank, c.azimuth_deg, c.channel, c.step_s, c.samples, c.processing, coalesce(c.start_at, ''), s.path, s.sha256, s.format
 		FROM component c JOIN source_file s ON s.id = c.source_id WHERE c.record_id = ? ORDER BY c.id`, recordID)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
 	}
-	return collect(rows, func(c *Component) []any {
-		return []any{&c.Role, &c.Axis, &c.Label, &c.Rank, &c.AzimuthDeg, &c.Channel, &c.StepS, &c.Samples, &c.Processing, &c.SourcePath, &c.SourceSHA256, &c.SourceFormat}
+	type row struct {
+		Component
+		start string
+	}
+	found, err := collect(rows, func(c *row) []any {
+		return []any{&c.Role, &c.Axis, &c.Label, &c.Rank, &c.AzimuthDeg, &c.Channel, &c.StepS, &c.Samples, &c.Processing, &c.start, &c.SourcePath, &c.SourceSHA256, &c.SourceFormat}
 	})
+	if err != nil {
+		return nil, err
+	}
+	out := make([]Component, len(found))
+	for i, c := range found {
+		out[i] = c.Component
+		if out[i].Start, err = parseTime(c.start); err != nil {
+			return nil, err
+		}
+	}
+	return out, nil
 }
 
 // DescribeComponent replaces a component's axis, label, rank and azimuth by

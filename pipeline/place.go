@@ -7,16 +7,11 @@ import (
 	"path"
 	"path/filepath"
 	"slices"
-	"time"
 
 	"swaybook/db"
 	"swaybook/ingest"
 	"swaybook/ingest/archive"
 )
-
-// startTolerance is how far apart the first samples of one record's components
-// may be. Recorders start all channels together, headers round to a second.
-const startTolerance = time.Second
 
 // placement is where a channel goes: the record's code, the channel's role, and
 // the new roles of what the record holds already.
@@ -41,7 +36,7 @@ type departure struct {
 // something else than a version tells the files apart.
 const maxVersions = 20
 
-// place finds the record for a channel of the file. Same event, station and
+// place finds the record for a channel, of so many samples, of the file. Same event, station and
 // instrument make one record, unless the channel starts at another time (a
 // second trigger), its direction is taken by another sensor of the same file
 // family, or it is another version of what the record holds: another format or
@@ -51,8 +46,8 @@ const maxVersions = 20
 // another delivery. Files without identity make one record only within a folder. What does
 // not belong gets a record of its own, whose code says why. A channel that states no
 // direction, and another content of a file that is held, are errors.
-func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (placement, error) {
-	r, err := findRecord(ctx, tx, res, c)
+func place(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel, samples int) (placement, error) {
+	r, err := findRecord(ctx, tx, res, c, samples)
 	if err != nil {
 		return placement{}, err
 	}
@@ -172,24 +167,6 @@ func recordOfCode(ctx context.Context, tx *db.Tx, code string) (db.StoredRecord,
 	return r, err
 }
 
-// findRecord returns the record to which the channel belongs by what it states, which may
-// be a new one.
-func findRecord(ctx context.Context, tx *db.Tx, res result, c *ingest.Channel) (db.StoredRecord, error) {
-	code, stated := ingest.RecordID(c, res.stem)
-	if !stated {
-		return findInFolder(ctx, tx, res, code)
-	}
-	r, err := recordOfCode(ctx, tx, code)
-	if err != nil || !startsApart(r.Start, c.Start) {
-		return r, err
-	}
-	later, ok, err := tx.FindTrigger(ctx, code, c.Start, startTolerance)
-	if ok || err != nil {
-		return later, err
-	}
-	return db.StoredRecord{Code: code + c.Start.UTC().Format("_T150405")}, nil
-}
-
 // findInFolder returns the record of files without identity that lie in the
 // file's folder, by what their names have in common: code, or the folder's name where that
 // is nothing but a direction. In other folders others may have that code.
@@ -234,10 +211,6 @@ func takenError(code string, rival db.Component, src db.Source, c *ingest.Channe
 			code, rival.SourcePath)
 	}
 	return fmt.Errorf("record %s holds this direction already (%s, from %s), and so do %d versions of it", code, rival.Role, rival.SourcePath, maxVersions)
-}
-
-func startsApart(a, b time.Time) bool {
-	return !a.IsZero() && !b.IsZero() && a.Sub(b).Abs() > startTolerance
 }
 
 // join gives the channel a role beside the record's components, or returns the

@@ -18,6 +18,7 @@ type seat struct {
 	channel ingest.Channel
 	path    string
 	want    string // record and role, or part of the error
+	samples int    // 0: 1
 }
 
 func horizontal(azimuth float64) ingest.Orientation {
@@ -39,6 +40,11 @@ func processed(c ingest.Channel, state ingest.Processing) ingest.Channel {
 	return c
 }
 
+func eventless(c ingest.Channel) ingest.Channel {
+	c.Event = ingest.Event{}
+	return c
+}
+
 func towards(c ingest.Channel, azimuth float64) ingest.Channel {
 	c.Orientation = horizontal(azimuth)
 	return c
@@ -53,66 +59,93 @@ func TestPlace(t *testing.T) {
 		seats []seat
 	}{
 		{"three components make one record", []seat{
-			{at(horizontal(90), "2", noon), "a", "E_S h2"}, {at(vertical, "3", noon), "b", "E_S v"}, {at(horizontal(0), "1", noon), "c", "E_S h1"},
+			{at(horizontal(90), "2", noon), "a", "E_S h2", 0}, {at(vertical, "3", noon), "b", "E_S v", 0}, {at(horizontal(0), "1", noon), "c", "E_S h1", 0},
 		}},
 		{"starts within a second are one trigger", []seat{
-			{at(horizontal(90), "", noon), "a", "E_S h2"}, {at(horizontal(0), "", noon.Add(time.Second)), "b", "E_S h1"},
+			{at(horizontal(90), "", noon), "a", "E_S h2", 0}, {at(horizontal(0), "", noon.Add(time.Second)), "b", "E_S h1", 0},
 		}},
 		{"a second trigger is a record of its own", []seat{
-			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon.Add(40*time.Second)), "b", "E_S_T120040 h1"},
-			{at(horizontal(90), "", noon.Add(40*time.Second)), "c", "E_S_T120040 h2"},
+			{at(horizontal(0), "", noon), "a", "E_S h1", 0}, {at(horizontal(0), "", noon.Add(40*time.Second)), "b", "E_S_T120040 h1", 0},
+			{at(horizontal(90), "", noon.Add(40*time.Second)), "c", "E_S_T120040 h2", 0},
 		}},
 		{"versions of a channel are records of their own", []seat{
-			{at(horizontal(0), "1", noon), "a", "E_S h1"}, {at(horizontal(0), "1", noon), "b", "E_S_v2 h1"}, {at(horizontal(0), "1", noon), "c", "E_S_v3 h1"},
-			{at(horizontal(90), "2", noon), "d", "E_S h2"}, {at(horizontal(90), "2", noon), "e", "E_S_v2 h2"},
+			{at(horizontal(0), "1", noon), "a", "E_S h1", 0}, {at(horizontal(0), "1", noon), "b", "E_S_v2 h1", 0}, {at(horizontal(0), "1", noon), "c", "E_S_v3 h1", 0},
+			{at(horizontal(90), "2", noon), "d", "E_S h2", 0}, {at(horizontal(90), "2", noon), "e", "E_S_v2 h2", 0},
 		}},
 		{"versions of a vertical", []seat{
-			{at(vertical, "", none), "a", "E_S v"}, {at(vertical, "", none), "b", "E_S_v2 v"},
+			{at(vertical, "", none), "a", "E_S v", 0}, {at(vertical, "", none), "b", "E_S_v2 v", 0},
 		}},
 		{"raw and corrected do not mix", []seat{
-			{processed(at(horizontal(0), "1", noon), ingest.ProcessingRaw), "a", "E_S h1"},
-			{processed(at(horizontal(90), "2", noon), ingest.ProcessingCorrected), "b", "E_S_v2 h2"},
-			{processed(at(horizontal(90), "2", noon), ingest.ProcessingRaw), "c", "E_S h2"},
-			{processed(at(horizontal(0), "1", noon), ingest.ProcessingCorrected), "d", "E_S_v2 h1"},
+			{processed(at(horizontal(0), "1", noon), ingest.ProcessingRaw), "a", "E_S h1", 0},
+			{processed(at(horizontal(90), "2", noon), ingest.ProcessingCorrected), "b", "E_S_v2 h2", 0},
+			{processed(at(horizontal(90), "2", noon), ingest.ProcessingRaw), "c", "E_S h2", 0},
+			{processed(at(horizontal(0), "1", noon), ingest.ProcessingCorrected), "d", "E_S_v2 h1", 0},
 		}},
 		{"another sensor in one direction is a record of its own", []seat{
-			{at(horizontal(0), "1", noon), "a", "E_S h1"}, {at(horizontal(0), "9", noon), "b", "E_S_ch9 h1"}, {at(horizontal(0), "9", noon), "c", "E_S_ch9_v2 h1"},
+			{at(horizontal(0), "1", noon), "a", "E_S h1", 0}, {at(horizontal(0), "9", noon), "b", "E_S_ch9 h1", 0}, {at(horizontal(0), "9", noon), "c", "E_S_ch9_v2 h1", 0},
 		}},
 		{"roles that collide follow the azimuths, whatever came first", []seat{
-			{at(horizontal(40), "", noon), "a", "E_S h1"}, {at(horizontal(320), "", noon), "b", "E_S h2"},
+			{at(horizontal(40), "", noon), "a", "E_S h1", 0}, {at(horizontal(320), "", noon), "b", "E_S h2", 0},
 		}},
 		{"roles that collide follow the azimuths, in the other order", []seat{
-			{at(horizontal(320), "", noon), "a", "E_S h2"}, {at(horizontal(40), "", noon), "b", "E_S h1"},
+			{at(horizontal(320), "", noon), "a", "E_S h2", 0}, {at(horizontal(40), "", noon), "b", "E_S h1", 0},
 		}},
 		{"components of a later trigger may straddle a second", []seat{
-			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon.Add(40*time.Second)), "b", "E_S_T120040 h1"},
-			{at(horizontal(90), "", noon.Add(41*time.Second)), "c", "E_S_T120040 h2"}, {at(vertical, "", noon.Add(39*time.Second)), "d", "E_S_T120040 v"},
+			{at(horizontal(0), "", noon), "a", "E_S h1", 0}, {at(horizontal(0), "", noon.Add(40*time.Second)), "b", "E_S_T120040 h1", 0},
+			{at(horizontal(90), "", noon.Add(41*time.Second)), "c", "E_S_T120040 h2", 0}, {at(vertical, "", noon.Add(39*time.Second)), "d", "E_S_T120040 v", 0},
 		}},
 		{"equal stems in folders of one name", []seat{
-			{anonymous, "EV1/records/run1.csv", "run1 h1"}, {anonymous, "EV2/records/run1.csv", "run1_ev2-records h1"},
-			{anonymous, "EV3/records/run1.csv", "run1_ev3-records h1"}, {anonymous, "EV3/records/run1.txt", "states no direction"},
+			{anonymous, "EV1/records/run1.csv", "run1 h1", 0}, {anonymous, "EV2/records/run1.csv", "run1_ev2-records h1", 0},
+			{anonymous, "EV3/records/run1.csv", "run1_ev3-records h1", 0}, {anonymous, "EV3/records/run1.txt", "states no direction", 0},
 		}},
 		{"components without identity join within a folder only", []seat{
-			{towards(anonymous, 0), "EV1/ST07_N.csv", "ST07 h1"}, {towards(anonymous, 90), "EV2/ST07_E.csv", "ST07_ev2 h2"}, {towards(anonymous, 90), "EV1/ST07_E.csv", "ST07 h2"},
+			{towards(anonymous, 0), "EV1/ST07_N.csv", "ST07 h1", 0}, {towards(anonymous, 90), "EV2/ST07_E.csv", "ST07_ev2 h2", 0}, {towards(anonymous, 90), "EV1/ST07_E.csv", "ST07 h2", 0},
 		}},
 		{"folders of one name under several that are named", []seat{
-			{towards(anonymous, 0), "a/EQ/rec_N.csv", "rec h1"}, {towards(anonymous, 0), "b/EQ/rec_N.csv", "rec_b-eq h1"}, {towards(anonymous, 90), "c/EQ/rec_E.csv", "rec_c-eq h2"},
+			{towards(anonymous, 0), "a/EQ/rec_N.csv", "rec h1", 0}, {towards(anonymous, 0), "b/EQ/rec_N.csv", "rec_b-eq h1", 0}, {towards(anonymous, 90), "c/EQ/rec_E.csv", "rec_c-eq h2", 0},
 		}},
 		{"files of several archives", []seat{
-			{towards(anonymous, 0), "in/s1.zip!d/rec_N.csv", "rec h1"}, {towards(anonymous, 0), "in/s2.zip!d/rec_N.csv", "rec_in-d h1"},
-			{towards(anonymous, 90), "in/s3.zip!d/rec_E.csv", "rec_in-d-2 h2"}, {towards(anonymous, 90), "in/s1.zip!d/rec_E.csv", "rec h2"},
-			{towards(anonymous, 90), "in/s2.zip!d/rec_E.csv", "rec_in-d h2"},
+			{towards(anonymous, 0), "in/s1.zip!d/rec_N.csv", "rec h1", 0}, {towards(anonymous, 0), "in/s2.zip!d/rec_N.csv", "rec_in-d h1", 0},
+			{towards(anonymous, 90), "in/s3.zip!d/rec_E.csv", "rec_in-d-2 h2", 0}, {towards(anonymous, 90), "in/s1.zip!d/rec_E.csv", "rec h2", 0},
+			{towards(anonymous, 90), "in/s2.zip!d/rec_E.csv", "rec_in-d h2", 0},
 		}},
 		{"files under a compressor lie where they would without", []seat{
-			{towards(anonymous, 0), "in/rec_N.csv.gz!rec_N.csv", "rec h1"}, {towards(anonymous, 90), "in/rec_E.csv.gz!rec_E.csv", "rec h2"},
-			{towards(anonymous, 0), "in/a.zip!x_N.csv.gz!x_N.csv", "x h1"}, {towards(anonymous, 90), "in/a.zip!x_E.csv", "x h2"},
+			{towards(anonymous, 0), "in/rec_N.csv.gz!rec_N.csv", "rec h1", 0}, {towards(anonymous, 90), "in/rec_E.csv.gz!rec_E.csv", "rec h2", 0},
+			{towards(anonymous, 0), "in/a.zip!x_N.csv.gz!x_N.csv", "x h1", 0}, {towards(anonymous, 90), "in/a.zip!x_E.csv", "x h2", 0},
 		}},
 		{"names that are a direction only go by the folder", []seat{
-			{towards(anonymous, 0), "in/EQ2/N.csv", "eq2 h1"}, {towards(anonymous, 90), "in/EQ2/E.csv", "eq2 h2"}, {towards(anonymous, 90), "in/EQ3/E.csv", "eq3 h2"},
-			{towards(anonymous, 0), "N.csv", "N h1"},
+			{towards(anonymous, 0), "in/EQ2/N.csv", "eq2 h1", 0}, {towards(anonymous, 90), "in/EQ2/E.csv", "eq2 h2", 0}, {towards(anonymous, 90), "in/EQ3/E.csv", "eq3 h2", 0},
+			{towards(anonymous, 0), "N.csv", "N h1", 0},
+		}},
+		{"directions in folders of their own that start some seconds apart", []seat{
+			{at(horizontal(90), "HNE", noon), "E/a", "E_S h2", 2000}, {at(horizontal(0), "HNN", noon.Add(7*time.Second)), "N/a", "E_S h1", 2000},
+			{at(vertical, "HNZ", noon.Add(-10*time.Second)), "Z/a", "E_S v", 2000},
+		}},
+		{"directions that start too far apart, or do not overlap", []seat{
+			{at(horizontal(90), "HNE", noon), "E/a", "E_S h2", 500}, {at(horizontal(0), "HNN", noon.Add(7*time.Second)), "N/a", "E_S_T120007 h1", 2000},
+			{at(vertical, "HNZ", noon.Add(-11*time.Second)), "Z/a", "E_S_T115949 v", 2000},
+		}},
+		{"two windows of which one starts some seconds later", []seat{
+			{at(horizontal(90), "HNE", noon), "E/a", "E_S h2", 2000}, {at(horizontal(90), "HNE", noon.Add(5*time.Second)), "E/b", "E_S_T120005 h2", 2000},
+			{at(horizontal(0), "HNN", noon.Add(5*time.Second)), "N/b", "E_S_T120005 h1", 2000}, {at(horizontal(0), "HNN", noon), "N/a", "E_S h1", 2000},
+			{at(vertical, "HNZ", noon.Add(8*time.Second)), "Z/b", "E_S v", 2000},
+		}},
+		{"two deliveries of which one starts some seconds later", []seat{
+			{at(horizontal(90), "HNE", noon), "a/E", "E_S h2", 2000}, {at(vertical, "HNZ", noon), "a/Z", "E_S v", 2000},
+			{at(horizontal(0), "HNN", noon.Add(5*time.Second)), "b/N", "E_S_T120005 h1", 2000}, {at(horizontal(90), "HNE", noon.Add(5*time.Second)), "b/E", "E_S_T120005 h2", 2000},
+		}},
+		{"a delivery of which a lone one has joined another's record", []seat{
+			{at(horizontal(90), "HNE", noon), "a/E", "E_S h2", 2000}, {at(horizontal(0), "HNN", noon.Add(5*time.Second)), "b/N", "E_S_v2 h1", 2000},
+			{at(horizontal(90), "HNE", noon.Add(5*time.Second)), "b/E", "E_S_v2 h2", 2000}, {at(vertical, "HNZ", noon.Add(5*time.Second)), "b/Z", "E_S_v2 v", 2000},
+		}},
+		{"no earthquake stated, and starts in several seconds", []seat{
+			{eventless(at(horizontal(90), "HNE", noon.Add(950*time.Millisecond))), "E/a", "20260312T120000_S h2", 2000},
+			{eventless(at(horizontal(0), "HNN", noon.Add(1020*time.Millisecond))), "N/a", "20260312T120000_S h1", 2000},
+			{eventless(at(vertical, "HNZ", noon.Add(-6*time.Second))), "Z/a", "20260312T120000_S v", 2000},
+			{eventless(at(vertical, "HNZ", noon.Add(13*time.Second))), "Z/b", "20260312T120013_S v", 2000},
 		}},
 		{"another content of the same file", []seat{
-			{at(horizontal(0), "", noon), "a", "E_S h1"}, {at(horizontal(0), "", noon), "a", "E_S h1"},
+			{at(horizontal(0), "", noon), "a", "E_S h1", 0}, {at(horizontal(0), "", noon), "a", "E_S h1", 0},
 		}},
 	}
 	for _, tt := range tests {
@@ -230,7 +263,7 @@ func placeAll(t *testing.T, seats []seat) {
 		parts := archive.Split(s.path)
 		res := result{
 			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, rel: s.path, stem: stemOf(parts[len(parts)-1]), outcome: Stored,
-			channels: []solved{{channel: s.channel, samples: 1, digest: "-", data: []byte{0},
+			channels: []solved{{channel: s.channel, samples: max(1, s.samples), digest: "-", data: []byte{0},
 				spectra: db.NewSpectra(nil, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1}, nil)}},
 		}
 		w.opts.Progress = func(p Progress) {

@@ -142,7 +142,7 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 		if s.channel.Event.ID != "" {
 			s.stated.Event.ID = s.channel.Event.ID
 		}
-		p, err := place(ctx, tx, res, &s.channel)
+		p, err := place(ctx, tx, res, &s.channel, s.samples)
 		if err != nil {
 			if report, err = w.reject(ctx, tx, res, report, s.channel.Line, err); err != nil {
 				return report, err

@@ -14,10 +14,10 @@ const rightAngleDeg = 1e-9
 // for a pair: below it errors of the components are more than doubled.
 const minSine = 0.5
 
-// furthestApart is how far apart the first samples of two components may be. Recorders
+// FurthestApart is how far apart the first samples of two components may be. Recorders
 // start all channels together; what was cut into files or packets of its own may begin
 // some seconds apart. The limit is ours.
-const furthestApart = 10 * time.Second
+const FurthestApart = 10 * time.Second
 
 // Horizontal is what decides, beside the values of the samples, whether a horizontal
 // component can be rotated with another one.
@@ -91,7 +91,7 @@ func startsLater(first, second Horizontal) (float64, error) {
 		earlier = second
 	}
 	steps := math.Ceil(apart.Abs().Seconds()/first.StepS - 0.5)
-	if apart.Abs() > furthestApart || steps >= float64(earlier.Samples) {
+	if apart.Abs() > FurthestApart || steps >= float64(earlier.Samples) {
 		return 0, &PairError{ReasonStarts, fmt.Sprintf("%v apart", apart.Abs())}
 	}
 	return math.Copysign(float64(steps*first.StepS), apart.Seconds()), nil
