@@ -77,7 +77,10 @@ func settleColumns(columns []plainColumn, rows *plainRows) ([]plainColumn, error
 		}
 		return nil, refuse(rows.line[0], "columns", "no column of accelerations")
 	}
-	return columns, checkDirections(columns, rows.line[0])
+	if err := checkDirections(columns, rows.line[0]); err != nil {
+		return nil, err
+	}
+	return columns, checkAxes(columns)
 }
 
 // checkDirections refuses value columns that cannot be told apart.

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"math"
 	"regexp"
 	"slices"
 	"strings"
@@ -42,6 +43,53 @@ func (h *plainHead) direct(c *Channel) error {
 		}
 	}
 	return nil
+}
+
+// checkAxes refuses columns of accelerations that are named for one direction, or along
+// one line, and a W beside U or V that no column of known azimuth makes west: U, V and W
+// are axes of any direction.
+func checkAxes(columns []plainColumn) error {
+	for i, c := range columns {
+		if c.kind != columnValue {
+			continue
+		}
+		for _, other := range columns[:i] {
+			if other.kind == columnValue && alongOneLine(c.orientation, other.orientation) {
+				return refuse(c.line, "columns", "columns %s and %s are of one direction, or U, V, W of any: name the directions (NS EW UD, or azimuths)", found(other.name), found(c.name))
+			}
+		}
+	}
+	isLetter := func(letters string) func(plainColumn) bool {
+		return func(c plainColumn) bool {
+			word := directionWord(c)
+			return c.kind == columnValue && len(word) == 1 && strings.Contains(letters, word)
+		}
+	}
+	w := slices.IndexFunc(columns, isLetter("W"))
+	if w < 0 || !slices.ContainsFunc(columns, isLetter("UV")) || slices.ContainsFunc(columns, func(c plainColumn) bool {
+		return c.kind == columnValue && c.orientation.AzimuthDeg.Known && directionWord(c) != "W"
+	}) {
+		return nil
+	}
+	return refuse(columns[w].line, "columns", "column %s beside U or V may be of any direction: name the directions (NS EW UD, or azimuths)", found(columns[w].name))
+}
+
+// directionWord returns the last word of a column's direction, in upper case: W of
+// Acc W.
+func directionWord(c plainColumn) string {
+	word := strings.ToUpper(commentKey(c.orientation.Label))
+	return word[strings.LastIndexByte(word, '_')+1:]
+}
+
+// alongOneLine reports whether two directions are surely one, or opposite.
+func alongOneLine(a, b Orientation) bool {
+	switch {
+	case a.Axis != b.Axis || a.Axis == AxisUnknown:
+		return false
+	case a.Axis == AxisVertical || a.AzimuthDeg.Known && b.AzimuthDeg.Known && math.Mod(math.Abs(a.AzimuthDeg.Value-b.AzimuthDeg.Value), 180) == 0:
+		return true
+	}
+	return !a.AzimuthDeg.Known && !b.AzimuthDeg.Known && a.Order != 0 && a.Order == b.Order
 }
 
 // locates reports whether lines speak of the way from the epicentre, as an azimuth

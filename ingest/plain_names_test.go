@@ -99,3 +99,24 @@ func TestPlainNamesOfDirections(t *testing.T) {
 		{"T alone with a unit", head([]string{"T (g),NS,UD"}, three), Hints{Unit: "gal"}, `case:1: time: unknown unit "g" of time; known are s and ms`},
 	})
 }
+
+// U, V and W are axes of any direction where nothing beside them makes W west, and no two
+// columns are of one direction.
+func TestPlainNamesOfAxes(t *testing.T) {
+	const axes = ": name the directions (NS EW UD, or azimuths)"
+	one := func(a, b string) string {
+		return `case:1: columns: columns "` + a + `" and "` + b + `" are of one direction, or U, V, W of any` + axes
+	}
+	hints := Hints{Unit: "gal", UnitForAll: true, StepS: 0.02}
+	checkHeads(t, []headCase{
+		{"Time (s),U (gal),V (gal),W (gal)", one("U (gal)", "V (gal)")}, {"Time (s),u,v,w", one("u", "v")}, {"t,W,V,U", one("V", "U")},
+		{"t,NS,N,UD", one("NS", "N")}, {"t,N,S,UD", one("N", "S")}, {"t,000,180,V", one("000", "180")}, {"t,N,E,EW", one("E", "EW")}, {"t,N45E,45,Z", one("N45E", "45")},
+		{"Time,L,H1,V", one("L", "H1")}, {"t,UD,E,Z", one("UD", "Z")},
+		{"t,H1,W,V", `case:1: columns: column "W" beside U or V may be of any direction` + axes},
+		{"t,N,W,U", "gal 0.02 h 0;gal 0.02 h 270;gal 0.02 v;"}, {"t,N,E,V", "gal 0.02 h 0;gal 0.02 h 90;gal 0.02 v;"}, {"t,L,T,V", "gal 0.02 h #1;gal 0.02 h #2;gal 0.02 v;"},
+	}, fourColumns(0.02), hints)
+	three := timed(even(20, 0.02), "%.2f", ",0.5,")
+	checkHeads(t, []headCase{
+		{"t,U,V", one("U", "V")}, {"t,W,U", `case:1: columns: column "W" beside U or V may be of any direction` + axes}, {"t,Acc V,Acc W", `case:1: columns: column "Acc W" beside U or V may be of any direction` + axes},
+	}, three, hints)
+}
