@@ -9,8 +9,9 @@ import (
 
 // The keys of comments that decide what the numbers mean.
 var (
-	unitKeys  = []string{"unit", "units"}
-	stepKeys  = []string{"dt", "time_step", "delta_t", "sampling_interval", "sample_interval", "dt_s", "time_step_s", "sampling_interval_s"}
+	unitKeys = []string{"unit", "units"}
+	stepKeys = []string{"dt", "time_step", "delta_t", "sampling_interval", "sample_interval", "time_increment",
+		"dt_s", "time_step_s", "sampling_interval_s", "sample_interval_s", "time_increment_s"}
 	rateKeys  = []string{"rate", "sampling_rate", "sample_rate", "sampling_frequency", "samples_per_second", "sps", "fs", "rate_hz", "sampling_rate_hz", "sampling_frequency_hz"}
 	countKeys = []string{"npts", "points", "number_of_points", "samples", "number_of_samples", "count"}
 	peakKeys  = []string{"pga", "peak", "peak_acceleration", "max_acceleration", "maximum_acceleration"}

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"fmt"
 	"strings"
 	"testing"
 )
@@ -85,4 +86,42 @@ func TestPlainHeadsAgainstFlags(t *testing.T) {
 		{"Frequency: 25 Hz", "gal 0.01;"}, {"ACCELERATION, GAL", "gal 0.01;"},
 		{"Quantity: Velocity", "skip: velocity series, not acceleration"}, {"# Type: displacement", "skip: displacement series, not acceleration"}, {"# Type: broadband", "gal 0.01;"},
 	}, column(20, "%.4f"), Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.01, StepFrom: "--dt", StepForAll: true})
+}
+
+// What speaks of another unit, scale or step in the words of common heads.
+func TestPlainHeadsOfWords(t *testing.T) {
+	forAll := Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.02, StepFrom: "--dt", StepForAll: true}
+	values := column(20, "%.4f")
+	var cases []headCase
+	for _, line := range []string{
+		"1500 points of accel data equally spaced at .010 sec. (cm/sec/sec)", "1500 points at equal spacing of .01 sec in gal", "DELTA = 0.01", "delta: 0.01 s", "DELTA 1e-2", "Delta_X\t0.01",
+		"SAMPLE_INTERVAL_S 0.01", "time increment 0.01", "Data spacing 10 ms", "1500 0.01 NPTS DT", "1500, 0.0100, NPTS, DT",
+	} {
+		cases = append(cases, headCase{"# " + line, fmt.Sprintf(`case:1: dt: %s speaks of a step of 0.01 s, --dt says 0.02 s: state it as # dt = …`, found(line))})
+	}
+	cases = append(cases, headCase{"# sampling_frequency 100", `case:1: dt: "sampling_frequency 100" speaks of 100 samples a second, --dt says a step of 0.02 s: state it as # rate = …`},
+		headCase{"# time increment (s): 0.01", "gal 0.01;the file says a step of 0.01 s: 0.02 s from --dt not used"},
+		headCase{"# delta: 0.05 deg, station ABC", "gal 0.02;"})
+	for line, unit := range map[string]string{
+		"Y_Unit_Label\tm/s^2": "m/s2", "acc_unit g": "g", "acc_unit cm_s2": "", "1500 points at equal spacing in g": "g", "1500 points of accel data (m/sec/sec)": "m/s2",
+		"values are meters per second squared": "m/s2", "Data given as m per sec per sec": "m/s2", "ACCELERATION DATA IN M/SEC**2": "m/s2",
+	} {
+		want := fmt.Sprintf(`case:1: unit: %q speaks of %s, --unit says gal: state the unit as # unit: …`, line, unit)
+		if unit == "" {
+			want = "gal 0.02;"
+		}
+		cases = append(cases, headCase{"# " + line, want})
+	}
+	for _, line := range []string{
+		"Data in counts", "digital counts, uncorrected", "ADC counts 24 bit", "calibration: 1.02e-6 g/count", "24 bit counts", "counts", "980000 counts per g", "values [counts]",
+		"Multiply by 0.1", "Multiply all values with 9.81 to get gal", "scale: 0.001", "scale_factor = 0.5", "Conversion factor: 981", "Multiplier 0.1",
+	} {
+		cases = append(cases, headCase{"# " + line, fmt.Sprintf(`case:1: unit: %q speaks of counts or a scale, --unit says gal: state the unit as # unit: …`, line)})
+	}
+	for _, line := range []string{
+		"converted from counts", "Raw counts were converted to gal", "Full scale 8388608 counts", "Sensitivity: 419430 counts/V", "scale: 1.0", "Map scale 1:25000", "calibration 2040", "values were multiplied by 981",
+	} {
+		cases = append(cases, headCase{"# " + line, "gal 0.02;"})
+	}
+	checkHeads(t, append(cases, headCase{"# acceleration, meters per second squared", "m/s2 0.02;the file says m/s2: gal from --unit not used"}), values, forAll)
 }

@@ -52,6 +52,7 @@ var (
 
 	unitMentions = []*regexp.Regexp{
 		regexp.MustCompile(`(?i)(?:^|[^\pL\d])((?:cm|mm|m|in|ft) *(?:/ *s(?:ec)? *(?:(?:\^|\*\*)? *2|²|/ *s(?:ec)?)|s?[ ·]*s\^?[-−⁻][2²]|ps2|s2)|gals?|mg|milli-?g)(?:$|[^\pL\d])`),
+		regexp.MustCompile(`(?i)(?:^|[^\pL\d])((?:(?:centi|milli)?met(?:er|re)s?|inch(?:es)?|feet|foot|cm|mm|m|in|ft) *(?:/|\bper\b) *s(?:ec(?:ond)?)?\.? *(?:squared|(?:/|\bper\b) *s(?:ec(?:ond)?)?|(?:\^|\*\*)? *2|²))(?:$|[^\pL\d])`),
 		regexp.MustCompile(`(?:^|[\s=/,:;])(g)(?:$|[\s),;.\]])`),
 		regexp.MustCompile(`[(\[] *([gG]) *[)\]]`),
 		regexp.MustCompile(`(?i)(?:\bin|\bof|\bunits?:?) +(g'?s?)(?:$|[\s),;.\]])`),
@@ -66,8 +67,11 @@ var (
 		regexp.MustCompile(`(?i)^freq(?:uency)?\W+((?:[5-9]\d|[1-9]\d\d)(?:\.\d*)?) *(?:hz)?$`), // lower ones are corners
 	}
 	stepMentions = []*regexp.Regexp{
-		regexp.MustCompile(`(?i)(?:\bdt\b|\bdelta[ _]?t\b|Δt|\btime[ _-]?step|\bstep\b|intervals?\b|sampling[ _-]?period|\bevery\b)[^\d.]{0,20}(\d*\.?\d+(?:e[-+]?\d+)?)( *ms| *msec| *milli)?`),
+		regexp.MustCompile(`(?i)(?:\bdt\b|\bdelta[ _]?t\b|Δt|\btime[ _-]?step|\bstep\b|\bequal(?:ly)? +spac(?:ed|ing)|\b(?:time|sampl\w+|data) *spacing|\b(?:time|sampl\w+) *increment|intervals?\b|sampling[ _-]?period|\bevery\b)[^\d.]{0,20}(\d*\.?\d+(?:e[-+]?\d+)?)( *ms| *msec| *milli)?`),
 		regexp.MustCompile(`(?i)(\d*\.?\d+)( *ms| *msec| *milli)?[a-z ]{0,8} (?:intervals?|steps?|apart)\b`),
+		// Alone on a line; degrees are those of an epicentre.
+		regexp.MustCompile(`(?i)\bdelta(?: ?x)?\b[^\d.]{0,20}(\d*\.?\d+(?:e[-+]?\d+)?)( *ms| *msec| *milli)?(?: *s(?:ec(?:onds?)?)?\.?)?(?:$|[,;)])`),
+		regexp.MustCompile(`(?i)^\d+[\s,]+(\d*\.\d+)()[\s,]+npts[\s,]+dt\b`),
 	}
 )
 
@@ -76,12 +80,28 @@ var (
 // that plainly speak of the numbers.
 var (
 	otherUnits  = regexp.MustCompile(`(?i)full.?scale|\brange\b|trigger|threshold|sensitivity|\bpeak\b|\bpga\b|\bmax(?:imum)?\b|\bg *= *\d|\b1 *g *=`)
-	unitStated  = regexp.MustCompile(`(?i)\bunits?\b|\bacc(?:el(?:eration)?s?)?\b|accelerogram|amplitude|\bvalues?\b|\bdata\b|\bsamples\b|scaled`)
+	unitStated  = regexp.MustCompile(`(?i)\bunits?\b|\bacc(?:el(?:eration)?s?)?\b|accelerogram|amplitude|\bvalues?\b|\bdata\b|\bsamples\b|\bpoints\b|\breadings\b|ground motion|scaled`)
 	afterNumber = regexp.MustCompile(`(?i)(?:[\d.] *|V */ *)$`)
 )
 
-// scaled is a line that says that the numbers are counts, or by what to multiply them.
-var scaled = regexp.MustCompile(`(?i)^(?:raw|digital|digiti[sz]er) *counts?$|\b1 *counts? *=|^scale factor\W*[\d.]+ *\(.*/`)
+// Lines that say that the numbers are counts, or by what to multiply them, and those
+// that speak of counts which are no more.
+var (
+	counted    = regexp.MustCompile(`(?i)^(?:counts?|cts)$|\b(?:in|as|are|raw|digital|digiti[sz]er|adc|a/d|bit|integer|units?:?) +(?:counts?|cts)\b|[(\[] *(?:counts?|cts) *[)\]]|(?:/|\bper\b) *counts?\b|\bcounts? *(?:/|\bper\b)|\b1 *counts? *=`)
+	recounted  = regexp.MustCompile(`(?i)\bfrom +(?:\w+ +)?counts?\b|\bcounts? +(?:\w+ +)*?(?:converted|scaled|divided)|\bmultiplied\b`)
+	multiplied = regexp.MustCompile(`(?i)\bmultiply\b.*\d|^multiplier\W*[\d.]|^scale factor\W*[\d.]+ *\(.*/`)
+	factor     = regexp.MustCompile(`(?i)^(?:(?:data|value|unit|amplitude) +)?(?:(?:scale|scaling|conversion|multiplication)(?: +(?:factor|constant))?|calibration +(?:factor|constant))[\s:=]+([-+]?[\d.]+(?:e[-+]?\d+)?)\W*$`)
+)
+
+// isScaled reports whether a line says that the numbers are counts, or are to be
+// multiplied by another number than one.
+func isScaled(text string) bool {
+	if m := factor.FindStringSubmatch(text); m != nil {
+		v, ok := parseNumber([]byte(m[1]))
+		return ok && v != 1
+	}
+	return multiplied.MatchString(text) || counted.MatchString(text) && !recounted.MatchString(text) && !otherUnits.MatchString(text)
+}
 
 // checkUnit refuses a unit that was stated for all files where a line that is not
 // understood seems to state another for the numbers; beside one that was stated for
@@ -92,7 +112,7 @@ func (h *plainHead) checkUnit(hints Hints) (warning string, err error) {
 		return "", nil // chooseUnit says so
 	}
 	for _, l := range h.lines {
-		if scaled.MatchString(l.text) {
+		if isScaled(l.words()) {
 			if hints.UnitForAll {
 				return "", refuse(l.line, "unit", "%s speaks of counts or a scale, %s says %s: state the unit as # unit: …", found(l.text), orElse(hints.UnitFrom, "the hint"), hint.Name)
 			}
@@ -117,23 +137,27 @@ func (h *plainHead) checkUnit(hints Hints) (warning string, err error) {
 // a word for the numbers, as all that it says, or as all that follows a key. A number
 // before it makes it a quantity, unless the line says unit.
 func (l heading) otherUnit(hint Unit) (Unit, bool) {
-	value := l.text[strings.LastIndexAny(l.text, ":=")+1:]
+	line := l.words()
+	value := line[strings.LastIndexAny(line, ":=")+1:]
 	_, err := ParseUnit(value)
-	if err != nil && !unitStated.MatchString(l.text) {
+	if err != nil && !unitStated.MatchString(line) {
 		return Unit{}, false
 	}
-	isUnit := strings.Contains(strings.ToLower(l.text), "unit")
+	isUnit := strings.Contains(strings.ToLower(line), "unit")
 	for _, pattern := range unitMentions {
-		for _, m := range pattern.FindAllStringSubmatchIndex(l.text, -1) {
-			text := l.text[m[2]:m[3]]
+		for _, m := range pattern.FindAllStringSubmatchIndex(line, -1) {
+			text := strings.ReplaceAll(line[m[2]:m[3]], " s2", "s2")
 			unit, err := ParseUnit(strings.ReplaceAll(text, "ms2", "m/s2"))
-			if err == nil && unit.MPS2 != hint.MPS2 && (isUnit || !afterNumber.MatchString(l.text[:m[2]])) {
+			if err == nil && unit.MPS2 != hint.MPS2 && (isUnit || !afterNumber.MatchString(line[:m[2]])) {
 				return unit, true
 			}
 		}
 	}
 	return Unit{}, false
 }
+
+// words is the line with blanks for underscores, which are no ends of words.
+func (l heading) words() string { return strings.ReplaceAll(l.text, "_", " ") }
 
 // states reports whether the line has one of the keys.
 func (l heading) states(keys []string) bool {
@@ -148,16 +172,17 @@ var otherSteps = regexp.MustCompile(`(?i)decimated|resampled|pre-?(?:event|trigg
 // speaks of another. What is no step of a record counts something else.
 func (h *plainHead) checkStep(hints Hints) error {
 	for _, l := range h.lines {
-		if otherSteps.MatchString(l.text) {
+		line := l.words()
+		if otherSteps.MatchString(line) {
 			continue
 		}
-		for _, m := range mentions(rateMentions, l.text) {
+		for _, m := range mentions(rateMentions, line) {
 			rate, ok := parseNumber([]byte(m[1]))
 			if ok && isOtherStep(1/rate, hints.StepS) {
 				return refuse(l.line, "dt", "%s speaks of %g samples a second, %s says a step of %.6g s: state it as # rate = …", found(l.text), rate, orElse(hints.StepFrom, "the hint"), hints.StepS)
 			}
 		}
-		for _, m := range mentions(stepMentions, l.text) {
+		for _, m := range mentions(stepMentions, line) {
 			step, ok := parseNumber([]byte(m[1]))
 			if m[2] != "" {
 				step /= 1000

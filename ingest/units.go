@@ -45,7 +45,8 @@ var unitWords = map[string]string{
 // with.
 var lengthWords = map[string]string{
 	"m": "m", "meter": "m", "meters": "m", "metre": "m", "metres": "m",
-	"cm": "cm", "mm": "mm",
+	"cm": "cm", "centimeter": "cm", "centimeters": "cm", "centimetre": "cm", "centimetres": "cm",
+	"mm": "mm", "millimeter": "mm", "millimeters": "mm", "millimetre": "mm", "millimetres": "mm",
 	"in": "in", "inch": "in", "inches": "in",
 	"ft": "ft", "foot": "ft", "feet": "ft",
 }
@@ -53,7 +54,7 @@ var lengthWords = map[string]string{
 // unitSpelling reduces the ways to write "per second squared" to one. Longer
 // words come first, since a Replacer tries its pairs in order.
 var unitSpelling = strings.NewReplacer(
-	"seconds", "s", "second", "s", "secs", "s", "sec", "s",
+	"squared", "2", "per", "/", "seconds", "s", "second", "s", "secs", "s", "sec", "s",
 	"⁻²", "-2", "−2", "-2", "²", "2", "^", "", "*", "", "·", "", ".", "", "(", "", ")", "",
 	" ", "", "\t", "", "_", "",
 )
