@@ -78,6 +78,9 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 		return nil, err
 	}
 	columns, rows, err := head.read(t, form)
+	if other := head.otherInWords(columns, hints); other != nil {
+		return nil, other
+	}
 	if err != nil {
 		return nil, err
 	}

@@ -78,18 +78,6 @@ func isSeriesName(word string) bool {
 	return isOtherName(word) && slices.ContainsFunc(strings.Split(word, "_"), func(part string) bool { return slices.Contains(seriesNames, part) })
 }
 
-// quantityKeys are those of lines that say what the numbers are.
-var quantityKeys = []string{"quantity", "type", "data_type"}
-
-// otherSeries returns a *NotMotionError where a line says in whole words that the
-// numbers are another quantity than acceleration.
-func (h *plainHead) otherSeries() error {
-	if word := commentKey(h.stated(quantityKeys...).text); isSeriesName(word) {
-		return &NotMotionError{orElse(otherQuantity(word), spectraReason)}
-	}
-	return nil
-}
-
 // spectraReason is why a table of spectra is skipped.
 const spectraReason = "spectra, not a time series"
 
