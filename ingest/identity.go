@@ -169,7 +169,7 @@ func direction(label string) (Orientation, bool) {
 var (
 	// stemToken is a direction after a separator at the end of a stem; a digit
 	// after NS, EW or UD numbers the sensor.
-	stemToken = regexp.MustCompile(`(?i)^(.*?)[-_. ]+(N-S|E-W|U-D|H1|H2|(?:NS|EW|UD)\d?|LONG|TRANS?|VERT?|VRT|UP|DO?WN|DN|[NESWZVULT]|\d{3})$`)
+	stemToken = regexp.MustCompile(`(?i)^(.*?)[-_. ]+(N-S|E-W|U-D|H1|H2|(?:NS|EW|UD)\d?|LONG|TRANS?|VERT?|VRT|UP|DO?WN|DN|[NESWZVULT]|\d{3}|(?-i:[FGDCESHBML][NG][ENZ]))$`)
 	// stemDigits are three digits that touch a letter. After a digit they may be
 	// part of a station code, a date or a time.
 	stemDigits = regexp.MustCompile(`^(.*[A-Za-z])(\d{3})$`)
@@ -186,7 +186,8 @@ var (
 // direction:
 //
 //	after a separator  H1 H2 V, N E Z, S W, NS EW UD, N-S E-W U-D, NS1 EW1 UD1 …,
-//	                   UP DN DWN DOWN, VER VERT VRT, L T, LONG TRAN, 000 to 360
+//	                   UP DN DWN DOWN, VER VERT VRT, L T, LONG TRAN, 000 to 360,
+//	                   channel codes of accelerometers in capitals, HNE HNN HNZ …
 //	touching           000 to 360 after a letter, NS EW UD after a digit, and UP DWN
 //	                   VER in names that begin with RSN and a number
 //
@@ -221,6 +222,9 @@ func stemDirection(token string) (Orientation, bool) {
 		return Orientation{}, false
 	}
 	o, ok := direction(token)
+	if channel := codeOf(token); !ok && !channel.velocity && channel.code == token {
+		o, ok = channel.direction()
+	}
 	if !ok {
 		return Orientation{}, false
 	}

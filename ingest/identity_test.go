@@ -65,6 +65,7 @@ func TestSplitStem(t *testing.T) {
 		{"quake_H1", "quake", "h #1"}, {"quake-h2", "quake", "h #2"}, {"quake.V", "quake", "v"},
 		{"quake_N", "quake", "h 0"}, {"quake_E", "quake", "h 90"}, {"quake Z", "quake", "v"}, {"quake_S", "quake", "h 180"}, {"quake_W", "quake", "h 270"},
 		{"quake_NS", "quake", "h 0"}, {"quake_ew", "quake", "h 90"}, {"quake_UD", "quake", "v"}, {"quake_N-S", "quake", "h 0"}, {"quake-E-W", "quake", "h 90"},
+		{"ABC_HNE", "ABC", "h 90"}, {"XX.ABC.00.HGZ", "XX.ABC.00", "v"}, {"HNN", "HNN", "h 0"}, {"ABC_HN1", "ABC_HN1", ""}, {"ABC_HHZ", "ABC_HHZ", ""}, {"2041_ene", "2041_ene", ""},
 		{"XYZ_NS1", "XYZ_1", "h 0"}, {"XYZ_EW2", "XYZ_2", "h 90"}, {"ABC0014103040812NS2", "ABC0014103040812_2", "h 0"}, {"ABC001EW", "ABC001", "h 90"},
 		{"XYZ000", "XYZ", "h 0"}, {"XYZ090", "XYZ", "h 90"}, {"XYZ360", "XYZ", "h 0"}, {"XYZ-UP", "XYZ", "v"}, {"XYZ-DWN", "XYZ", "v"}, {"quake_230", "quake", "h 230"},
 		{"RSN123_NORTHWATER_CDH090", "RSN123_NORTHWATER_CDH", "h 90"}, {"RSN123_NORTHWATER_CDHUP", "RSN123_NORTHWATER_CDH", "v"}, {"RSN9_NW_RIVERVER", "RSN9_NW_RIVER", "v"},

@@ -187,9 +187,12 @@ func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 	}
 	switch {
 	case col.unit.text != "":
-	case comment.text != "" || hints.Unit == "":
+	case comment.text != "":
 		return chooseUnit(comment, hints)
 	default:
+		if err := h.checkSensor(col, hints); err != nil {
+			return Unit{}, "", err
+		}
 		warning, err := h.checkUnit(hints)
 		if err != nil {
 			return Unit{}, "", err

@@ -24,7 +24,8 @@ type plainColumn struct {
 	orientation Orientation
 	unit        statement // of a value column
 	scale       float64   // s per unit of a time column whose name states it, else 0
-	byComment   bool      // named by a comment, perhaps by chance
+	channel     codedChannel
+	byComment   bool // named by a comment, perhaps by chance
 }
 
 // columns gives the columns their meaning by the names over them. Unnamed, one
@@ -78,6 +79,9 @@ func settleColumns(columns []plainColumn, rows *plainRows) ([]plainColumn, error
 		return nil, refuse(rows.line[0], "columns", "no column of accelerations")
 	}
 	if err := checkDirections(columns, rows.line[0]); err != nil {
+		return nil, err
+	}
+	if err := checkCodes(columns); err != nil {
 		return nil, err
 	}
 	return columns, checkAxes(columns)

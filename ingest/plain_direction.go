@@ -2,7 +2,6 @@ package ingest
 
 import (
 	"math"
-	"regexp"
 	"slices"
 	"strings"
 )
@@ -30,7 +29,7 @@ func (h *plainHead) direct(c *Channel) error {
 		case !ok && s.sure:
 			c.warn("line %d: %s %s not understood", s.line, s.key, found(s.value))
 		case !ok:
-			return refuse(s.line, s.key, "unknown direction %s", found(s.value))
+			return refuse(s.line, s.key, "unknown direction %s%s", found(s.value), codeOf(s.value).whyNone())
 		case o.Axis == AxisUnknown:
 			c.warn("line %d: %s %s is no direction", s.line, s.key, found(s.value))
 		case c.Orientation.Axis == AxisUnknown:
@@ -41,6 +40,9 @@ func (h *plainHead) direct(c *Channel) error {
 		default:
 			return refuse(s.line, s.key, "%s here, column %s over the numbers", found(s.value), c.Orientation.Label)
 		}
+	}
+	if o, ok := codeOf(c.ChannelCode).direction(); ok && c.Orientation.Axis == AxisUnknown {
+		c.Orientation = o
 	}
 	return nil
 }
@@ -101,12 +103,6 @@ func (h *plainHead) locates() bool {
 	})
 }
 
-// channelCode is a code of band, instrument and direction.
-//
-// Source: FDSN, Standard for the Exchange of Earthquake Data, version 2.4, appendix A
-// (from memory).
-var channelCode = regexp.MustCompile(`^[A-Z]{2}[ENZ]$`)
-
 // statedDirection reads a direction in the ways that people write one: as direction
 // does, in degrees with decimals or their sign, from north to east (N45E), by a
 // channel code. Its axis is unknown for a single digit, which counts.
@@ -123,8 +119,8 @@ func statedDirection(text string) (o Orientation, ok bool) {
 		o, ok = azimuth(deg), true
 	} else if v, isNumber := parseNumber([]byte(number)); isNumber && v >= 0 && v <= 360 {
 		o, ok = azimuth(v), true
-	} else if channelCode.MatchString(text) {
-		o, ok = direction(text[2:])
+	} else {
+		o, ok = codeOf(text).direction()
 	}
 	o.Label = text
 	return o, ok

@@ -120,3 +120,26 @@ func TestPlainNamesOfAxes(t *testing.T) {
 		{"t,U,V", one("U", "V")}, {"t,W,U", `case:1: columns: column "W" beside U or V may be of any direction` + axes}, {"t,Acc V,Acc W", `case:1: columns: column "Acc W" beside U or V may be of any direction` + axes},
 	}, three, hints)
 }
+
+// Channel codes give the directions E, N and Z, and say what the sensor measures.
+func TestPlainNamesByCode(t *testing.T) {
+	forAll := Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.02}
+	const three, dirs = "gal 0.02 h 90;gal 0.02 h 0;gal 0.02 v;", ": name the directions (NS EW UD, or azimuths)"
+	velocity := func(line int, code string) string {
+		return fmt.Sprintf("case:%d: unit: %s is the channel of a velocity sensor: if the numbers are accelerations, state their unit as # unit: …", line, code)
+	}
+	checkHeads(t, []headCase{
+		{"Time (s),HNE (gal),HNN (gal),HNZ (gal)", three}, {"t,ABC.HNE,ABC.HNN,ABC.HNZ", three}, {"t,XX.ABC.00.BNE,XX.ABC.00.BNN,XX.ABC.00.BNZ", three}, {"t,HGE_gal,HGN_gal,HGZ_gal", three},
+		{"t,Acc HNE,Acc HNN,Acc HNZ", three}, {"t,LNE,LNN,HGZ\ns,gal,gal,gal", three},
+		{"t,HN1,HN2,HNZ", `case:1: columns: column "HN1": orientation code 1 may be of any direction` + dirs}, {"t,HNU,HNV,HNW", `case:1: columns: column "HNU": orientation code U may be of any direction` + dirs},
+		{"t,ABC.HNE,DEF.HNE,Z", `case:2: columns: column "DEF.HNE": several columns of accelerations need different directions as names`},
+		{"t,HHE,HHN,HHZ", velocity(1, "HHE")}, {"# unit: gal\nt,HHE,HHN,HHZ", three}, {"t,HHE (gal),HHN (gal),HHZ (gal)", three}, {"t,HHE,HHN,HHZ\ns,gal,gal,gal", three},
+		{"t,HHE (m/s),HHN (m/s),HHZ (m/s)", `case:1: unit: "m/s" is a unit of velocity, not of acceleration`},
+	}, fourColumns(0.02), forAll)
+	checkHeads(t, []headCase{
+		{"# channel: HNE", "gal 0.02 h 90;"}, {"# component: XX.ABC.00.HNE", "gal 0.02 h 90;"}, {"HNZ", "gal 0.02 v;"}, {"# HNE", "gal 0.02;"}, {"# HNE (gal)", "gal 0.02 h 90;"},
+		{"# component: HN2", `case:1: component: unknown direction "HN2": orientation code 2 may be of any direction`},
+		{"# channel: BHZ", velocity(1, "BHZ")}, {"# station: ABC\n# component: EHN", velocity(2, "EHN")}, {"# component: EHN\n# unit: gal", "gal 0.02 h 0;"},
+	}, column(20, "%.4f"), forAll)
+	checkHeads(t, []headCase{{"# component: EHN", "gal 0.02 h 0;"}}, column(20, "%.4f"), Hints{Unit: "gal", UnitFrom: "catalogue line 2", StepS: 0.02})
+}

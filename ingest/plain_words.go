@@ -32,6 +32,10 @@ func nameColumn(name string, line int) (plainColumn, error) {
 		c.kind = columnValue
 	} else if isCounter(word) {
 		c.kind = columnValue // of unknown direction
+	} else if c.channel = codeOf(base[:min(len(word), len(base))]); c.channel.code != "" {
+		c.kind = columnValue
+		c.orientation, _ = c.channel.direction()
+		c.orientation.Label = c.channel.code
 	} else if o, ok := columnDirection(base, word); ok {
 		c.kind, c.orientation = columnValue, o
 	}
