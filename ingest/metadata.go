@@ -69,12 +69,19 @@ func (m *Metadata) addPath(ctx context.Context, path string) error {
 	if err != nil {
 		return fmt.Errorf("read metadata: %w", err)
 	}
+	some := false
 	for _, e := range entries {
-		if !e.IsDir() && MayBeMetadata(e.Name()) {
-			if _, err := m.AddFile(ctx, filepath.Join(path, e.Name())); err != nil {
-				return err
-			}
+		if e.IsDir() || !MayBeMetadata(e.Name()) {
+			continue
 		}
+		used, err := m.AddFile(ctx, filepath.Join(path, e.Name()))
+		if err != nil {
+			return err
+		}
+		some = some || used != ""
+	}
+	if !some {
+		m.notes = append(m.notes, MetadataNote{Path: path, Text: "no *.xml in this folder is StationXML or QuakeML; folders below it are not read"})
 	}
 	return nil
 }

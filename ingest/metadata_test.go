@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"os"
 	"path/filepath"
 	"reflect"
 	"runtime"
@@ -202,5 +203,22 @@ func BenchmarkAddEvents(b *testing.B) {
 		if len(m.Events()) != n {
 			b.Fatal(len(m.Events()))
 		}
+	}
+}
+
+// A folder that holds no document is noted.
+func TestMetadataOfAnEmptyFolder(t *testing.T) {
+	empty, other := t.TempDir(), t.TempDir()
+	for name, text := range map[string]string{"page.xml": "<page/>", "station.txt": ""} {
+		if err := os.WriteFile(filepath.Join(other, name), []byte(text), 0o600); err != nil {
+			t.Fatal(err)
+		}
+	}
+	m, err := ReadMetadata(t.Context(), []string{empty, other})
+	if err != nil || len(m.Notes()) != 2 || m.Notes()[0].Text != "no *.xml in this folder is StationXML or QuakeML; folders below it are not read" {
+		t.Errorf("%v, %+v", err, m)
+	}
+	if m, err := ReadMetadata(t.Context(), []string{filepath.Join("..", "testdata", "records", "miniseed")}); err != nil || len(m.Notes()) > 0 {
+		t.Errorf("%v, %+v", err, m.Notes())
 	}
 }
