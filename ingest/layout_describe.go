@@ -124,13 +124,21 @@ func (l *Layout) unit(c *Channel, v layoutValues, column int, hints Hints) error
 	return nil
 }
 
+// layoutDirection reads a direction; a digit that is a rank stays one.
+func layoutDirection(text string) (Orientation, bool) {
+	if o, ok := direction(text); ok {
+		return o, true
+	}
+	return statedDirection(text)
+}
+
 // orient settles the direction, which decides what the motion counts for: what
 // is not understood is an error.
 func (l *Layout) orient(c *Channel, v layoutValues, column int) error {
 	if s, ok := l.stated(v, "direction", column); ok {
 		o, known := l.directions[s.text]
 		if !known {
-			if o, known = direction(s.text); !known {
+			if o, known = layoutDirection(s.text); !known {
 				return refuse(s.line, "direction", "unknown direction %s; say under [directions] what it means", found(s.text))
 			}
 		}

@@ -66,7 +66,7 @@ func checkQuantity(name, text string) error {
 			err = fmt.Errorf("expected a time as 2006-01-02T15:04:05Z, found %s", found(text))
 		}
 	case "direction":
-		if _, ok = direction(text); !ok {
+		if _, ok = layoutDirection(text); !ok {
 			err = fmt.Errorf("unknown direction %s", found(text))
 		}
 	case "processing":

@@ -201,9 +201,9 @@ func (l *Layout) readDirections(t *tomlTable) {
 		return
 	}
 	for _, word := range slices.Sorted(maps.Keys(d.values)) {
-		o, ok := direction(d.text(word))
+		o, ok := layoutDirection(d.text(word))
 		if !ok {
-			d.fail(word, "unknown direction; known are N, E, S, W, NS, EW, UD, H1, H2, V, the like, and azimuths")
+			d.fail(word, "unknown direction; known are N, E, S, W, NS, EW, UD, H1, H2, V, the like, azimuths and N45E")
 		}
 		l.directions[word] = o
 	}

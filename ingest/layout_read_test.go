@@ -99,6 +99,7 @@ func TestLayoutMistakes(t *testing.T) {
 		{0, "column = [{ number = 1, holds = \"acceleration\" }, { number = 1, holds = \"acceleration\" }]", `case.toml:6: column.number: column 1 is described twice`},
 		{0, "column = [{ number = 1, holds = \"acceleration\" }, { number = 2, holds = \"acceleration\" }]", `case.toml:6: column: column 1: several columns of accelerations need a direction or azimuth_deg each`},
 		{0, "column = [{ number = 1, holds = \"acceleration\", direction = \"N\" }, { number = 2, holds = \"acceleration\", azimuth_deg = 0 }]", `case.toml:6: column: column 2 has the direction of column 1`},
+		{0, "column = [{ number = 1, holds = \"acceleration\", direction = \"N90E\" }, { number = 2, holds = \"acceleration\", azimuth_deg = 90 }]", `case.toml:6: column: column 2 has the direction of column 1`},
 		{0, "column = [{ number = 1, holds = \"time\", unit = \"min\" }]", `case.toml:6: column.unit: expected s, ms, found "min"`},
 		{0, "[[column]]\nnumber = 1\nholds = \"acceleration\"\nmagnitude = 5", `case.toml:9: column.magnitude: unknown key; known are azimuth_deg, channel, direction, holds, instrument, number, peak, scale, scale_divisor, unit`},
 		{0, "numbers.per_line = 2", `case.toml:6: key numbers is already defined`},
@@ -129,7 +130,7 @@ func TestLayoutMistakes(t *testing.T) {
 		{0, "[[header]]\npattern = 'x(?P<start_time>.)'\ntime = \"YYYY DOY hh\"", `case.toml:6: header: start_time: hours, minutes and seconds do not fit together`},
 		{0, "[[header]]\npattern = 'x(?P<origin_time>.)'\ntime = \"YYYY DOY hh:mm\"", `case.toml:6: header: origin_time: zone is missing, as in zone = "UTC" or zone = "+09:00"`},
 
-		{0, "directions = { A = \"about north\" }", `case.toml:6: directions.A: unknown direction; known are N, E, S, W, NS, EW, UD, H1, H2, V, the like, and azimuths`},
+		{0, "directions = { A = \"about north\" }", `case.toml:6: directions.A: unknown direction; known are N, E, S, W, NS, EW, UD, H1, H2, V, the like, azimuths and N45E`},
 		{0, "blocks = {}", `case.toml:6: blocks.begin: missing: a regular expression for the line that begins a channel`},
 		{0, "title = \"" + strings.Repeat("x", maxDescription) + "\"", `case.toml: description of 65537 bytes is larger than the limit of 65536`},
 		{0, "blocks = { begin = '" + strings.Repeat("x", 1001) + "' }", `case.toml:6: blocks.begin: pattern of 1001 bytes is longer than the limit of 1000`},
