@@ -98,7 +98,9 @@ func (l *Layout) unit(c *Channel, v layoutValues, column int, hints Hints) error
 		if err != nil {
 			return refuse(p.line, "peak", "%w", err)
 		}
-		c.HeaderPeak = Known(math.Abs(peak) * unit.MPS2)
+		if !isMark(peak) {
+			c.HeaderPeak = Known(math.Abs(peak) * unit.MPS2)
+		}
 	}
 	factor := 1.0
 	for _, name := range []string{"scale", "scale_divisor"} {

@@ -54,10 +54,13 @@ func sameStatement(a, b string) bool {
 // of the samples. It speaks of the file's only channel.
 func (h *plainHead) setPeak(c *Channel) {
 	s := h.stated(peakKeys...)
-	if s.text == "" {
+	if s.text == "" || isMissing(s.text) {
 		return
 	}
 	v, name, ok := peakQuantity(s.text)
+	if ok && (isMark(v) || v == -99) {
+		return // no value
+	}
 	unit := Unit{MPS2: c.UnitMPS2}
 	if name != "" {
 		var err error

@@ -191,3 +191,12 @@ func TestPlainWarnings(t *testing.T) {
 		t.Errorf("%v, %+v", err, channels)
 	}
 }
+
+// A mark for missing values is no peak.
+func TestPlainPeakUnknown(t *testing.T) {
+	var cases []headCase
+	for _, mark := range []string{"-999", "-999.0 gal", "9999", "-99", "n/a", "-", "NaN", "0"} {
+		cases = append(cases, headCase{"# PGA: " + mark, "gal 0.01;"})
+	}
+	checkHeads(t, append(cases, headCase{"# PGA: 99 gal", `case:2: peak: samples reach 0.003 m/s², the header says 0.99 m/s²`}), column(20, "%.5f"), Hints{Unit: "gal", StepS: 0.01})
+}
