@@ -97,8 +97,12 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 // read reads the numbers and settles what the columns hold.
 func (h *plainHead) read(t *Text, form numberForm) ([]plainColumn, *plainRows, error) {
 	rows, err := h.wrapped(t, form)
-	if err != nil || rows != nil {
-		return []plainColumn{{kind: columnValue}}, rows, err
+	if err != nil {
+		return nil, nil, err
+	}
+	if rows != nil {
+		columns := []plainColumn{{kind: columnValue}}
+		return columns, rows, h.readRemarks(t, columns, rows)
 	}
 	columns, err := h.columns(form)
 	if err != nil {
@@ -107,7 +111,9 @@ func (h *plainHead) read(t *Text, form numberForm) ([]plainColumn, *plainRows, e
 	if rows, err = readRows(t, h.first, form); err != nil {
 		return nil, nil, err
 	}
-	columns, err = settleColumns(columns, rows)
+	if columns, err = settleColumns(columns, rows); err == nil {
+		err = h.readRemarks(t, columns, rows)
+	}
 	return columns, rows, err
 }
 

@@ -99,6 +99,7 @@ func (h *plainHead) wrapped(t *Text, form numberForm) (*plainRows, error) {
 		return nil, nil
 	}
 	reader := Layout{numbers: layoutNumbers{form: form}}
+	reader.data.comment = []byte("#")
 	series, err := reader.series(t, span{first, t.Len()}, -1)
 	if err != nil || len(series.rows) == count {
 		return nil, nil // rows, or what the reader of rows says better
@@ -113,7 +114,7 @@ func (h *plainHead) wrapped(t *Text, form numberForm) (*plainRows, error) {
 	case got != count:
 		return nil, refuse(series.line(got-1), "samples", "announced %d values, found %d in lines of %d", count, got, form.fields)
 	}
-	return &plainRows{values: series.values, resolution: []float64{1}, minus: series.minus, line: series.lines()}, nil
+	return &plainRows{values: series.values, resolution: []float64{1}, minus: series.minus, line: series.lines(), remarks: remarksIn(t, first), counted: true}, nil
 }
 
 // announced returns the number of values that a comment or the first line of

@@ -58,25 +58,14 @@ func readPlainHead(t *Text) (*plainHead, error) {
 		return nil, refuse(min(t.Len(), plainPreamble), "samples", "no data found in the first %d lines", plainPreamble)
 	}
 	for n := 1; n < h.first; n++ {
-		line := t.Bytes(n)
-		if len(bytes.TrimSpace(line)) == 0 {
+		if len(bytes.TrimSpace(t.Bytes(n))) == 0 {
 			continue
 		}
-		l := heading{"", n, !isComment(line)}
-		if len(line) <= maxHeading {
-			l.text = strings.TrimSpace(latin(line))
-		}
-		if !l.sure {
-			l.text = strings.TrimSpace(strings.TrimLeft(l.text, "#%!;*/\""))
-		}
+		l := newHeading(t, n)
 		if l.text != "" && strings.Trim(l.text, "-=_+|*, ;\t") == "" {
 			continue // a rule under the names
 		}
-		h.lines = append(h.lines, l)
-		for _, c := range l.statements() {
-			c.sure = l.sure
-			h.comments = append(h.comments, c)
-		}
+		h.add(l)
 	}
 	if n := len(h.lines); n > 0 && h.lines[n-1].sure && h.lines[n-1].text != "" {
 		last := h.lines[n-1]

@@ -14,6 +14,8 @@ type plainRows struct {
 	line       []int       // line of each row
 	head       string      // the first line as written
 	minus      int         // first line with a Unicode minus sign, 0 if none
+	remarks    []int       // lines that are comments
+	counted    bool        // a line of its own states how many there are
 }
 
 // namedLines is how many lines an error names.
@@ -49,8 +51,8 @@ func (f *faults) err() error {
 	return refuse(f.lines[0], "samples", "%s (%d lines at fault: %s)", f.cause, f.total, named)
 }
 
-// readRows reads all lines from first on. Every line must fit the form; one
-// blank line at a time is passed over. A first line that holds nothing but the
+// readRows reads all lines from first on. Every line must fit the form; comments and
+// one blank line at a time are passed over. A first line that holds nothing but the
 // number of those below it is a count.
 func readRows(t *Text, first int, form numberForm) (*plainRows, error) {
 	r := newPlainRows(t, first, form)
@@ -62,6 +64,10 @@ func readRows(t *Text, first int, form numberForm) (*plainRows, error) {
 		fits := r.append(line, n, form, scratch)
 		if !fits && len(bytes.TrimSpace(line)) == 0 {
 			blanks++
+			continue
+		}
+		if !fits && isRemark(line) {
+			r.remarks = append(r.remarks, n)
 			continue
 		}
 		if blanks > 1 {
@@ -90,11 +96,13 @@ func readRows(t *Text, first int, form numberForm) (*plainRows, error) {
 	}
 	if form.fields == 1 && len(r.line) > 1 && r.values[0][0] == float64(len(r.line)-1) {
 		r.values[0], r.line = r.values[0][1:], r.line[1:] // the count of those below
+		r.counted = true
 		return r, nil
 	}
 	if len(r.line) == 0 {
 		return nil, refuse(first, "samples", "no data found")
 	}
+	r.counted = !math.IsNaN(count)
 	return r, checkFirstValue(t, first, r)
 }
 

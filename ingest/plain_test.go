@@ -215,7 +215,7 @@ func TestPlainRefusals(t *testing.T) {
 		{"missing first value", head([]string{"NaN"}, values), known, `case:1: samples: value "NaN": missing values are not read`},
 		{"number", edit(t, values, 7, values[6], "0.1x"), known, `case:7: samples: expected a number, found "0.1x"`},
 		{"text after the data", head(values, []string{"end of record"}), known, `case:21: samples: expected a number, found "end of record"`},
-		{"comment in the data", head(values, []string{"# second part", "0.1"}), known, `case:21: samples: expected a number, found "# second part"`},
+		{"comment in the data", head(values, []string{"# second part", "0.1"}), known, `case:21: samples: comment "second part" among the numbers: a second record? if not, state their count as # npts = …`},
 		{"more fields", edit(t, values, 7, values[6], "0.1 0.2"), known, `case:7: samples: expected a number, found "0.1 0.2"`},
 		{"overflow", edit(t, values, 7, values[6], "1e38"), known, `case:7: samples: value "1e38" is an overflow mark`},
 		{"asterisks", edit(t, values, 7, values[6], "********"), known, `case:7: samples: value "********": missing values are not read`},
