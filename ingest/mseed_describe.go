@@ -44,6 +44,9 @@ func (c *mseedChannel) describe(t *miniseed.Trace, hints Hints) error {
 	}
 	if epoch != nil {
 		c.place(epoch)
+		if epoch.Doubts != "" {
+			c.warn("station metadata differ: %s", epoch.Doubts)
+		}
 	}
 	return nil
 }

@@ -34,6 +34,10 @@ func TestMiniSEEDContradiction(t *testing.T) {
 			t.Errorf("of documents that agree: %+v, %q, warnings %q", c.Orientation, c.Station.Name, c.Warnings)
 		}
 	}
+	deeper := parseMiniSEED(t, counts, add("<Depth>1<", "<Depth>30<"))[0]
+	if deeper.Siting != SitingBorehole || len(deeper.Warnings) != 1 || !strings.HasPrefix(deeper.Warnings[0], "station metadata differ: a.xml:12 and b.xml:12 say depth 1 m / 30 m (30 m taken)") {
+		t.Errorf("of two depths: %s, warnings %q", deeper.Siting, deeper.Warnings)
+	}
 	r.Encoding, differ.Unit = encodedFloat32, "mm/s2"
 	warnings := parseMiniSEED(t, r.Series(2), differ)[0].Warnings
 	if want := []string{"station metadata contradict each other, and are not used: " + say}; !reflect.DeepEqual(warnings, want) {

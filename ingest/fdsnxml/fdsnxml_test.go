@@ -130,7 +130,7 @@ func TestLookup(t *testing.T) {
 		{"before", "00", "HNE", day(2030, 1, 1, 0), day(2030, 1, 1, 1), 0, "no epoch covers 2030-01-01T00:00:00Z" + both},
 		{"other location", "10", "HNE", day(2036, 1, 1, 0), day(2036, 1, 1, 1), 0, ErrUnknown.Error()},
 		{"other channel", "00", "HNN", day(2036, 1, 1, 0), day(2036, 1, 1, 1), 0, ErrUnknown.Error()},
-		{"two epochs", "00", "HNE", change, change, 0, ":13 and :21 say sensitivity 213000 counts per m/s**2 / -428000.5 counts per m/s**2; position 30.5°, 149.75° / 30.5001°, 149.7501°; elevation 12 m / 10 m; depth 0 m / 2 m; azimuth 90° / 93°; dip 0° / -1.5°; sample rate 100 Hz / 200 Hz"},
+		{"two epochs", "00", "HNE", change, change, 0, ":13 and :21 say sensitivity 213000 counts per m/s**2 / -428000.5 counts per m/s**2; azimuth 90° / 93°; dip 0° / -1.5°; sample rate 100 Hz / 200 Hz"},
 	}
 	for _, k := range cases {
 		c, err := v.Lookup("XX", "CULM", k.location, k.code, k.from, k.to)
@@ -164,9 +164,15 @@ func TestMergeAndSite(t *testing.T) {
 			t.Errorf("Site(%v) = %+v, want none", miss, s)
 		}
 	}
+	higher, _ := ReadStations(t.Context(), []byte(`<FDSNStationXML><Network code="XX"><Station code="CULM" startDate="2039-01-01">`+
+		`<Latitude>30.5003</Latitude><Longitude>149.7503</Longitude><Elevation>42</Elevation></Station></Network></FDSNStationXML>`))
+	v.Merge(higher, "b.xml")
+	if s, ok := v.Site("XX", "CULM", time.Time{}); !ok || s.Latitude != known(30.5003) || s.ElevationM.Known || s.Name == "" {
+		t.Errorf("of two elevations at one place Site gives %+v, %v", s, ok)
+	}
 	moved, _ := ReadStations(t.Context(), bytes.Replace(read(t, "station.xml"), []byte(">30.5<"), []byte(">31.5<"), 1))
 	v.Merge(moved, "c.xml")
-	if s, ok := v.Site("XX", "CULM", time.Time{}); ok || len(v.Stations) != 2 {
+	if s, ok := v.Site("XX", "CULM", time.Time{}); ok || len(v.Stations) != 3 {
 		t.Errorf("of two places Site gives %+v", s)
 	}
 }

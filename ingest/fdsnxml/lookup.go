@@ -1,8 +1,10 @@
 package fdsnxml
 
 import (
+	"cmp"
 	"errors"
 	"fmt"
+	"slices"
 	"strings"
 	"time"
 )
@@ -44,20 +46,49 @@ func (v *Inventory) Lookup(network, station, location_, code string, from, to ti
 }
 
 // Site returns the epoch of a station that covers the time, or any where the
-// time is zero. Where the epochs that fit are at different places, there is none.
+// time is zero. Of several at one place the one that begins last is taken, without its
+// elevation where others have another one; where they are at different places, there is
+// none.
 func (v *Inventory) Site(network, code string, at time.Time) (s Station, ok bool) {
 	wanted := Station{Network: network, Code: code}
+	var fit []Station
 	for _, i := range v.stations.named[wanted.name()] {
-		other := v.Stations[i]
-		if !at.IsZero() && !covers(other.Start, other.End, at, at) {
-			continue
+		if other := v.Stations[i]; at.IsZero() || covers(other.Start, other.End, at, at) {
+			fit = append(fit, other)
 		}
-		if ok && (s.Latitude != other.Latitude || s.Longitude != other.Longitude || s.ElevationM != other.ElevationM) {
+	}
+	if len(fit) == 0 {
+		return Station{}, false
+	}
+	slices.SortFunc(fit, compareStations)
+	s = fit[0]
+	for _, other := range fit[1:] {
+		if s.Latitude.Known && other.Latitude.Known && !samePlace(s.Latitude, s.Longitude, other.Latitude, other.Longitude) {
 			return Station{}, false
 		}
-		s, ok = other, true
+		if s.ElevationM.Known && other.ElevationM.Known && apart(s.ElevationM.Value, other.ElevationM.Value, elevationAgreement) {
+			s.ElevationM = Number{}
+		}
+		s.Name = cmp.Or(s.Name, other.Name)
 	}
-	return s, ok
+	return s, true
+}
+
+// elevationAgreement is how far elevations in m of one station may differ, as statements
+// on it are told apart elsewhere. Common practice.
+const elevationAgreement = 10
+
+// compareStations puts those with a position first, of these the one that begins later,
+// then orders by what is said.
+func compareStations(a, b Station) int {
+	if a.Latitude.Known != b.Latitude.Known {
+		return compareNumbers(a.Latitude, b.Latitude)
+	}
+	return cmp.Or(
+		b.Start.Compare(a.Start), a.End.Compare(b.End),
+		compareNumbers(a.Latitude, b.Latitude), compareNumbers(a.Longitude, b.Longitude), compareNumbers(a.ElevationM, b.ElevationM),
+		cmp.Compare(a.Name, b.Name),
+	)
 }
 
 // Merge adds what the document at path says. What is said already is kept once, as

@@ -43,6 +43,9 @@ type Channel struct {
 	// several epochs Path names all and Line is 0.
 	Path string
 	Line int
+	// Doubts are what several epochs say otherwise of what does not decide about the
+	// samples, "" where that is nothing.
+	Doubts string
 }
 
 // Place names the element: path:line.
@@ -245,7 +248,10 @@ func (raw *xmlChannel) channel(network, station string) (c Channel, err error) {
 		raw.Response.badSensitivity(), badGain, bothKnown(c.Latitude, c.Longitude),
 		c.AzimuthDeg.within("azimuth", -360, 360), c.DipDeg.within("dip", -90, 90))
 	if c.AzimuthDeg.Known && err == nil {
-		c.AzimuthDeg.Value = math.Mod(c.AzimuthDeg.Value+360, 360)
+		if c.AzimuthDeg.Value < 0 {
+			c.AzimuthDeg.Value += 360
+		}
+		c.AzimuthDeg.Value = math.Mod(c.AzimuthDeg.Value, 360)
 	}
 	return c, err
 }
