@@ -43,7 +43,7 @@ type Info struct {
 }
 
 // Format reads one kind of record file. A new format is one type that
-// implements it and one line in Formats.
+// implements it and one line in formats.
 type Format interface {
 	// Info describes the format.
 	Info() Info
