@@ -194,7 +194,7 @@ func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 	switch {
 	case col.unit.text != "":
 	case comment.text != "":
-		return chooseUnit(comment, hints)
+		return h.doubtScales(chooseUnit(comment, hints))
 	default:
 		if err := h.checkSensor(col, hints); err != nil {
 			return Unit{}, "", err
@@ -213,7 +213,7 @@ func (h *plainHead) unit(col plainColumn, hints Hints) (Unit, string, error) {
 			return Unit{}, "", refuse(col.unit.line, "unit", "the column says %s, the comment on line %d says %s", a.Name, comment.line, b.Name)
 		}
 	}
-	return chooseUnit(col.unit, hints)
+	return h.doubtScales(chooseUnit(col.unit, hints))
 }
 
 // step joins what the time column, the comments and the hints say.

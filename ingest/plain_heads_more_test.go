@@ -125,3 +125,25 @@ func TestPlainHeadsOfWords(t *testing.T) {
 	}
 	checkHeads(t, append(cases, headCase{"# acceleration, meters per second squared", "m/s2 0.02;the file says m/s2: gal from --unit not used"}), values, forAll)
 }
+
+// Units of velocity and displacement are no accelerations, and a scale beside a unit is
+// doubtful.
+func TestPlainHeadsOfOtherMotions(t *testing.T) {
+	forAll := Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.02}
+	values := column(20, "%.4f")
+	var cases []headCase
+	for line, unit := range map[string]string{
+		"All values in cm/s": "cm/s", "cm/s": "cm/s", "(CM/SEC)": "CM/SEC", "1500 points (cm/sec)": "cm/sec", "Y_Unit_Label m/s": "m/s", "Values are in cm": "cm", "data in m per sec": "m per sec",
+	} {
+		cases = append(cases, headCase{"# " + line, fmt.Sprintf(`case:1: unit: %s speaks of %s, which is no acceleration, --unit says gal: state the unit as # unit: …`, found(line), unit)})
+	}
+	for _, line := range []string{
+		"DATA IN CM/SEC /SEC", "values in cm/s/s", "Data from a velocity of 3 cm/s on", "PGV of the data 3 cm/s", "Vs30 data: 300 m/s", "Data: shear wave 300 m/s", "Station at 12 m depth", "values in cm/s2",
+	} {
+		cases = append(cases, headCase{"# " + line, "gal 0.02;"})
+	}
+	checkHeads(t, append(cases,
+		headCase{"# Multiply by 0.1\n# unit: gal", `gal 0.02;line 1: "Multiply by 0.1" speaks of counts or a scale: the numbers taken as gal`},
+		headCase{"# scale: 0.5\nAcc (g)", `g 0.02;line 1: "scale: 0.5" speaks of counts or a scale: the numbers taken as g;the file says g: gal from --unit not used`},
+	), values, forAll)
+}

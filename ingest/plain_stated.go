@@ -112,25 +112,69 @@ func (h *plainHead) checkUnit(hints Hints) (warning string, err error) {
 		return "", nil // chooseUnit says so
 	}
 	for _, l := range h.lines {
-		if isScaled(l.words()) {
-			if hints.UnitForAll {
-				return "", refuse(l.line, "unit", "%s speaks of counts or a scale, %s says %s: state the unit as # unit: …", found(l.text), orElse(hints.UnitFrom, "the hint"), hint.Name)
-			}
-			warning = fmt.Sprintf("line %d speaks of counts or a scale: %s from %s taken", l.line, hint.Name, orElse(hints.UnitFrom, "hint"))
-			continue
+		other := l.otherThan(hint)
+		if other != "" && hints.UnitForAll {
+			return "", refuse(l.line, "unit", "%s speaks of %s, %s says %s: state the unit as # unit: …", found(l.text), other, orElse(hints.UnitFrom, "the hint"), hint.Name)
 		}
-		if l.states(peakKeys) || otherUnits.MatchString(l.text) {
-			continue
-		}
-		unit, ok := l.otherUnit(hint)
-		switch {
-		case ok && hints.UnitForAll:
-			return "", refuse(l.line, "unit", "%s speaks of %s, %s says %s: state the unit as # unit: …", found(l.text), unit.Name, orElse(hints.UnitFrom, "the hint"), hint.Name)
-		case ok:
-			warning = fmt.Sprintf("line %d speaks of %s: %s from %s taken", l.line, unit.Name, hint.Name, orElse(hints.UnitFrom, "hint"))
+		if other != "" {
+			warning = fmt.Sprintf("line %d speaks of %s: %s from %s taken", l.line, other, hint.Name, orElse(hints.UnitFrom, "hint"))
 		}
 	}
 	return warning, nil
+}
+
+// otherThan says what else than the hint's unit the line seems to say of the numbers,
+// "" for nothing.
+func (l heading) otherThan(hint Unit) string {
+	if isScaled(l.words()) {
+		return "counts or a scale"
+	}
+	if l.states(peakKeys) || otherUnits.MatchString(l.text) {
+		return ""
+	}
+	if unit, ok := l.otherUnit(hint); ok {
+		return unit.Name
+	}
+	if unit := l.otherMotion(); unit != "" {
+		return unit + ", which is no acceleration"
+	}
+	return ""
+}
+
+// motionUnits are those of velocity and displacement, as what a line says or where it
+// speaks of the numbers, and besideMotion are words of lines that have a unit of
+// acceleration too, or speak of another motion beside the numbers.
+var (
+	motionUnits = []*regexp.Regexp{
+		regexp.MustCompile(`(?i)^[(\[]? *((?:cm|mm|m|in|ft) *(?:/ *s(?:ec)?|per *sec(?:ond)?))\.? *[)\]]?$`),
+		regexp.MustCompile(`(?i)(?:\bunits?\b|\bvalues?\b|\bdata\b|\bamplitudes?\b|\bpoints\b|\breadings\b).*?(?:^|[^\pL\d.] *)((?:cm|mm|m|in|ft) *(?:/ *s(?:ec)?|per *sec(?:ond)?))\.?(?:[\s),;\]]|$)`),
+		regexp.MustCompile(`(?i)(?:\bunits?|\bvalues?|\bdata|\bamplitudes?)(?: +are)?:? +(?:in|of) +(cm|mm|m|inch(?:es)?|ft|feet)\W*$`),
+	}
+	besideMotion = regexp.MustCompile(`(?i)\bvel|\bdisp|\bpg[vd]\b|\bvs\d*\b|\bwave`)
+)
+
+// otherMotion returns the unit of velocity or displacement that the line seems to state
+// of the numbers, "" for none.
+func (l heading) otherMotion() string {
+	line := l.words()
+	if besideMotion.MatchString(line) || len(mentions(unitMentions, line)) > 0 {
+		return ""
+	}
+	if m := mentions(motionUnits, line); len(m) > 0 {
+		return m[0][1]
+	}
+	return ""
+}
+
+// doubtScales warns of lines that speak of counts or a scale beside a unit that the file
+// states, which may be that of the numbers or of what becomes of them.
+func (h *plainHead) doubtScales(unit Unit, warning string, err error) (Unit, string, error) {
+	for _, l := range h.lines {
+		if err == nil && isScaled(l.words()) {
+			h.doubt("line %d: %s speaks of counts or a scale: the numbers taken as %s", l.line, found(l.text), unit.Name)
+		}
+	}
+	return unit, warning, err
 }
 
 // otherUnit returns another unit than the hint's that the line seems to state: with

@@ -354,6 +354,7 @@ func FuzzPlain(f *testing.F) {
 	f.Add([]byte("# dt=0.01, unit=g\n1 0.1\n2 \u22120.2\n"))
 	f.Add([]byte("# component: 3G\n# dt = 0.01\n# unit: g\n0"))
 	f.Add([]byte("NS;EW\n1,5;2\n\n3;4\n"))
+	f.Add([]byte("# scale: 0.5\nTime (s),HNE (gal),XX.ABC.00.HNZ\n0,1,2\n# gap?\n0.01,2,3\n\n# dt = 0.01\n#\n"))
 	f.Fuzz(func(t *testing.T, data []byte) { fuzzFormat(t, plain{}, data) })
 }
 
