@@ -77,8 +77,13 @@ func samePlace(latitude, longitude, otherLatitude, otherLongitude Number) bool {
 func differInResponse(a, b *Channel) bool {
 	s, r := a.Sensitivity, b.Sensitivity
 	return s.Value.Known != r.Value.Known || s.Value.Known &&
-		(!strings.EqualFold(s.OutputUnit, r.OutputUnit) || !strings.EqualFold(s.InputUnit, r.InputUnit) || apartInShare(s.Value.Value, r.Value.Value))
+		(spelled(s.OutputUnit) != spelled(r.OutputUnit) || spelled(s.InputUnit) != spelled(r.InputUnit) || apartInShare(s.Value.Value, r.Value.Value))
 }
+
+// unitSpellings are the ways in which documents write one unit.
+var unitSpellings = strings.NewReplacer("/s/s", "/s2", "/sec/sec", "/s2", "/sec", "/s", "**", "", "^", "", " ", "", "counts", "count")
+
+func spelled(unit string) string { return unitSpellings.Replace(strings.ToLower(unit)) }
 
 func sayResponse(c *Channel) string {
 	s := c.Sensitivity

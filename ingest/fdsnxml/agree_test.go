@@ -39,6 +39,8 @@ func TestEpochsThatAgree(t *testing.T) {
 	for name, others := range map[string][]string{
 		"equal":                 {all},
 		"another end":           {strings.Replace(all, "startDate", `endDate="2040-01-01" startDate`, 1)},
+		"units otherwise":       {strings.NewReplacer("M/S**2", "m/s^2", "counts", "COUNT").Replace(all)},
+		"a unit otherwise":      {strings.Replace(all, "M/S**2", "m/s/s", 1)},
 		"spelled otherwise":     {strings.NewReplacer("M/S", "m/s", "-0<", "0<", "2e5", "200000").Replace(all)},
 		"less":                  {epochOf("", `<Depth>3</Depth>`)},
 		"each another part":     {epochOf("", `<Depth>3</Depth><Azimuth>90</Azimuth>`), epochOf("", `<Depth>3</Depth><Dip>0</Dip>`)},
