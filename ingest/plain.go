@@ -136,6 +136,9 @@ func (h *plainHead) channels(columns []plainColumn, rows *plainRows, step float6
 		if warning != "" {
 			c.warn("%s", warning)
 		}
+		if why := col.channel.whyNone(); why != "" {
+			c.warn("column %s%s", found(col.name), why)
+		}
 		c.Warnings = append(c.Warnings, h.doubts...)
 		warnUnused(&c, hints)
 		if rows.minus > 0 {

@@ -30,8 +30,8 @@ func codeOf(text string) codedChannel {
 		}
 	}
 	m := channelCode.FindStringSubmatch(text)
-	if m == nil {
-		return codedChannel{}
+	if m == nil || m[1]+m[2] == "CH" && (m[3] == "N" || isDigit(m[3][0])) {
+		return codedChannel{} // CH1 and CHN are a channel and its number more often
 	}
 	return codedChannel{m[1] + m[2] + m[3], m[2] != "N" && m[2] != "G"}
 }
@@ -54,10 +54,17 @@ func (c codedChannel) whyNone() string {
 	return ": orientation code " + c.code[2:] + " may be of any direction"
 }
 
-// checkCodes refuses columns named by codes that give no direction.
+// checkCodes refuses several columns of which one is named by a code that gives no
+// direction.
 func checkCodes(columns []plainColumn) error {
+	values := 0
 	for _, c := range columns {
-		if why := c.channel.whyNone(); c.kind == columnValue && why != "" {
+		if c.kind == columnValue {
+			values++
+		}
+	}
+	for _, c := range columns {
+		if why := c.channel.whyNone(); c.kind == columnValue && why != "" && values > 1 {
 			return refuse(c.line, "columns", "column %s%s: name the directions (NS EW UD, or azimuths)", found(c.name), why)
 		}
 	}

@@ -141,5 +141,7 @@ func TestPlainNamesByCode(t *testing.T) {
 		{"# component: HN2", `case:1: component: unknown direction "HN2": orientation code 2 may be of any direction`},
 		{"# channel: BHZ", velocity(1, "BHZ")}, {"# station: ABC\n# component: EHN", velocity(2, "EHN")}, {"# component: EHN\n# unit: gal", "gal 0.02 h 0;"},
 	}, column(20, "%.4f"), forAll)
+	checkHeads(t, []headCase{{"Time (s),CH1 (gal)", "gal 0.02;"}, {"Time (s),HN1 (gal)", `gal 0.02;column "HN1 (gal)": orientation code 1 may be of any direction`}},
+		timed(even(20, 0.02), "%.2f", ","), forAll)
 	checkHeads(t, []headCase{{"# component: EHN", "gal 0.02 h 0;"}}, column(20, "%.4f"), Hints{Unit: "gal", UnitFrom: "catalogue line 2", StepS: 0.02})
 }
