@@ -113,13 +113,13 @@ func TestPlainHeadsOfWords(t *testing.T) {
 		cases = append(cases, headCase{"# " + line, want})
 	}
 	for _, line := range []string{
-		"Data in counts", "digital counts, uncorrected", "ADC counts 24 bit", "calibration: 1.02e-6 g/count", "24 bit counts", "counts", "980000 counts per g", "values [counts]",
+		"Data in counts", "digital counts, uncorrected", "ADC counts 24 bit", "calibration: 1.02e-6 g/count", "24 bit counts", "counts", "980000 counts per g", "values [counts]", "in counts, not converted", "raw counts, to be converted to gal",
 		"Multiply by 0.1", "Multiply all values with 9.81 to get gal", "scale: 0.001", "scale_factor = 0.5", "Conversion factor: 981", "Multiplier 0.1",
 	} {
 		cases = append(cases, headCase{"# " + line, fmt.Sprintf(`case:1: unit: %q speaks of counts or a scale, --unit says gal: state the unit as # unit: …`, line)})
 	}
 	for _, line := range []string{
-		"converted from counts", "Raw counts were converted to gal", "Full scale 8388608 counts", "Sensitivity: 419430 counts/V", "scale: 1.0", "Map scale 1:25000", "calibration 2040", "values were multiplied by 981",
+		"converted from counts", "Raw counts were converted to gal", "recorded in counts, then converted", "Full scale 8388608 counts", "Sensitivity: 419430 counts/V", "scale: 1.0", "Map scale 1:25000", "calibration 2040", "values were multiplied by 981",
 	} {
 		cases = append(cases, headCase{"# " + line, "gal 0.02;"})
 	}

@@ -47,7 +47,7 @@ var (
 	seriesShort    = regexp.MustCompile(`^(VEL|DISP)(?:OC|L)?\.?(?: +[A-Z][A-Z0-9.-]*)*$`)
 	spectrumSpoken = regexp.MustCompile(`(?i)^(?:(?:elastic|pseudo|absolute|relative|acceleration|velocity|displacement|acc) *[ -] *)*(?:response|fourier|amplitude|power) *(?:amplitude *)?spectr(?:um|a)\b`)
 	notSpoken      = regexp.MustCompile(`(?i)model|sensor|seismomet|transducer|shear|wave|\bvs\d*\b|peak|\bpg[vd]\b|max|filter|window|baseline|\bfiles?\b|drift|residual|final|permanent|\bnot?\b|available|[:=] *[-+]?\.?\d`)
-	notSpectrum    = regexp.MustCompile(`(?i)match|compatib|target|design|\bscaled|filter|accelerogram|histor|\bnot?\b|\bfiles?\b`)
+	notSpectrum    = regexp.MustCompile(`(?i)match|compatib|target|design|\bscaled|filter|accelerogram|histor|\bnot?\b|\bfiles?\b|available|separat|\bsee\b|\balso\b`)
 )
 
 // spokenQuantity returns why a file is no acceleration of whose numbers a line in words

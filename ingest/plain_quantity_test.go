@@ -13,7 +13,7 @@ func TestPlainHeadsOfQuantities(t *testing.T) {
 		{"# Corrected velocity, station ABC\n# unit: g", "g 0.02;the file says g: gal from --unit not used"}, {"# VEL ABC NS\nAcc", "gal 0.02;"},
 	}
 	for _, line := range []string{
-		"Response spectrum matched to site class B", "Velocity model: local", "Velocity, Vs30 = 300 m/s", "Shear-wave velocity", "Velocity data not available", "Corrected acceleration, velocity and displacement",
+		"Response spectrum matched to site class B", "Response spectra are available separately", "Velocity model: local", "Velocity, Vs30 = 300 m/s", "Shear-wave velocity", "Velocity data not available", "Corrected acceleration, velocity and displacement",
 		"Displacement of 3 cm at end", "Displacement sensor: none", "Velocity (cm/s): 3.2", "Final displacement, cm", "DISP 3.1 CM", "VELOCITY 12 CM/S AT 4 S",
 	} {
 		cases = append(cases, headCase{"# " + line, "gal 0.02;"})

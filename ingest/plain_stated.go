@@ -88,7 +88,8 @@ var (
 // that speak of counts which are no more.
 var (
 	counted    = regexp.MustCompile(`(?i)^(?:counts?|cts)$|\b(?:in|as|are|raw|digital|digiti[sz]er|adc|a/d|bit|integer|units?:?) +(?:counts?|cts)\b|[(\[] *(?:counts?|cts) *[)\]]|(?:/|\bper\b) *counts?\b|\bcounts? *(?:/|\bper\b)|\b1 *counts? *=`)
-	recounted  = regexp.MustCompile(`(?i)\bfrom +(?:\w+ +)?counts?\b|\bcounts? +(?:\w+ +)*?(?:converted|scaled|divided)|\bmultiplied\b`)
+	recounted  = regexp.MustCompile(`(?i)\bfrom +(?:\w+ +)?counts?\b|\bcounts?\b[^.]*\b(?:converted|divided)\b|\bmultiplied\b`)
+	unchanged  = regexp.MustCompile(`(?i)\bnot\b|\bto be\b`)
 	multiplied = regexp.MustCompile(`(?i)\bmultiply\b.*\d|^multiplier\W*[\d.]|^scale factor\W*[\d.]+ *\(.*/`)
 	factor     = regexp.MustCompile(`(?i)^(?:(?:data|value|unit|amplitude) +)?(?:(?:scale|scaling|conversion|multiplication)(?: +(?:factor|constant))?|calibration +(?:factor|constant))[\s:=]+([-+]?[\d.]+(?:e[-+]?\d+)?)\W*$`)
 )
@@ -100,7 +101,7 @@ func isScaled(text string) bool {
 		v, ok := parseNumber([]byte(m[1]))
 		return ok && v != 1
 	}
-	return multiplied.MatchString(text) || counted.MatchString(text) && !recounted.MatchString(text) && !otherUnits.MatchString(text)
+	return multiplied.MatchString(text) || counted.MatchString(text) && (!recounted.MatchString(text) || unchanged.MatchString(text)) && !otherUnits.MatchString(text)
 }
 
 // checkUnit refuses a unit that was stated for all files where a line that is not
