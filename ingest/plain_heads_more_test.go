@@ -114,12 +114,13 @@ func TestPlainHeadsOfWords(t *testing.T) {
 	}
 	for _, line := range []string{
 		"Data in counts", "digital counts, uncorrected", "ADC counts 24 bit", "calibration: 1.02e-6 g/count", "24 bit counts", "counts", "980000 counts per g", "values [counts]", "in counts, not converted", "raw counts, to be converted to gal",
+		"amplitude in 0.1 gal", "mGal", "Accelerations (in %g)", "values x 1000", "cm/s^2 * 10", "data in mV", "Volts", "raw data, digitizer units", "in 10^-3 g",
 		"Multiply by 0.1", "Multiply all values with 9.81 to get gal", "scale: 0.001", "scale_factor = 0.5", "Conversion factor: 981", "Multiplier 0.1",
 	} {
 		cases = append(cases, headCase{"# " + line, fmt.Sprintf(`case:1: unit: %q speaks of counts or a scale, --unit says gal: state the unit as # unit: …`, line)})
 	}
 	for _, line := range []string{
-		"converted from counts", "Raw counts were converted to gal", "recorded in counts, then converted", "Full scale 8388608 counts", "Sensitivity: 419430 counts/V", "scale: 1.0", "Map scale 1:25000", "calibration 2040", "values were multiplied by 981",
+		"converted from counts", "Raw counts were converted to gal", "recorded in counts, then converted", "Full scale 8388608 counts", "Sensitivity: 419430 counts/V", "Peak of 0.1 mGal", "grid of 10 x 10 km", "sensor x 10, 3 channels", "version 2", "recorded in V3 format", "in 2 g range", "scale: 1.0", "Map scale 1:25000", "calibration 2040", "values were multiplied by 981",
 	} {
 		cases = append(cases, headCase{"# " + line, "gal 0.02;"})
 	}

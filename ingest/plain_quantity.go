@@ -44,8 +44,11 @@ func (h *plainHead) otherInWords(columns []plainColumn, hints Hints) error {
 var (
 	seriesSpoken = regexp.MustCompile(`(?i)^(?:(?:(?:un)?corrected|raw|processed|filtered|ground|relative|absolute|total|integrated|horizontal|vertical|\d+) +)*(vel|disp)(?:ocity|lacement)s?` +
 		`(?:$| *[,;(\[]| +(?:of|at|for) +(?:the +)?(?:station|site|ground|instrument|record)| +(?:time|histor|series|record|data|trace|component|values|points|in +(?:cm|mm|m|in|ft|inch|met|cent))[^,]*)`)
+	seriesLast     = regexp.MustCompile(`(?i)(?:^|[\s,;])(vel|disp)(?:ocity|lacement)(?: *[(\[][^)\]]*[)\]])?$|(?:^|[\s,;])(vel|disp)(?:ocity|lacement)?[.,]? *[(\[]?(?:in +)?(?:cm|mm|m|in|ft)(?:/s(?:ec)?)?[)\]]?$`)
+	notLast        = regexp.MustCompile(`(?i)\b(?:and|or|for|from|by|zero|constant|with|without|in +(?:vel|disp))\b`)
 	seriesShort    = regexp.MustCompile(`^(VEL|DISP)(?:OC|L)?\.?(?: +[A-Z][A-Z0-9.-]*)*$`)
 	spectrumSpoken = regexp.MustCompile(`(?i)^(?:(?:elastic|pseudo|absolute|relative|acceleration|velocity|displacement|acc) *[ -] *)*(?:response|fourier|amplitude|power) *(?:amplitude *)?spectr(?:um|a)\b`)
+	spectralShort  = regexp.MustCompile(`^P?S[AVD]\b.*(?:%|damp)`)
 	notSpoken      = regexp.MustCompile(`(?i)model|sensor|seismomet|transducer|shear|wave|\bvs\d*\b|peak|\bpg[vd]\b|max|filter|window|baseline|\bfiles?\b|drift|residual|final|permanent|\bnot?\b|available|[:=] *[-+]?\.?\d`)
 	notSpectrum    = regexp.MustCompile(`(?i)match|compatib|target|design|\bscaled|filter|accelerogram|histor|\bnot?\b|\bfiles?\b|available|separat|\bsee\b|\balso\b`)
 )
@@ -53,15 +56,18 @@ var (
 // spokenQuantity returns why a file is no acceleration of whose numbers a line in words
 // speaks, "" where it says no such thing.
 func spokenQuantity(text string) string {
-	if spectrumSpoken.MatchString(text) && !notSpectrum.MatchString(text) {
+	if spectralShort.MatchString(text) || spectrumSpoken.MatchString(text) && !notSpectrum.MatchString(text) {
 		return spectraReason
 	}
 	m := seriesShort.FindStringSubmatch(text)
 	if m == nil && !strings.Contains(strings.ToLower(text), "acc") && !notSpoken.MatchString(text) {
 		m = seriesSpoken.FindStringSubmatch(text)
 	}
+	if m == nil && !strings.Contains(strings.ToLower(text), "acc") && !notSpoken.MatchString(text) && !notLast.MatchString(text) {
+		m = seriesLast.FindStringSubmatch(text)
+	}
 	if m == nil {
 		return ""
 	}
-	return otherQuantity(strings.ToLower(m[1]))
+	return otherQuantity(strings.ToLower(strings.Join(m[1:], "")))
 }

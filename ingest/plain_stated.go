@@ -84,11 +84,15 @@ var (
 	afterNumber = regexp.MustCompile(`(?i)(?:[\d.] *|V */ *)$`)
 )
 
-// Lines that say that the numbers are counts, or by what to multiply them, and those
-// that speak of counts which are no more.
+// Lines that say that the numbers are counts, or by what to multiply them, those that speak
+// of counts which are no more, and those of units that are not known, or multiples of one.
 var (
 	counted    = regexp.MustCompile(`(?i)^(?:counts?|cts)$|\b(?:in|as|are|raw|digital|digiti[sz]er|adc|a/d|bit|integer|units?:?) +(?:counts?|cts)\b|[(\[] *(?:counts?|cts) *[)\]]|(?:/|\bper\b) *counts?\b|\bcounts? *(?:/|\bper\b)|\b1 *counts? *=`)
 	recounted  = regexp.MustCompile(`(?i)\bfrom +(?:\w+ +)?counts?\b|\bcounts?\b[^.]*\b(?:converted|divided)\b|\bmultiplied\b`)
+	otherScale = regexp.MustCompile(`(?i)\bm(?:illi)?gals?\b|(?:%|\bpercent(?: +of)?) *g(?:$|[^\pL\d])` +
+		`|\bin +(?:\d*\.?\d+|10 *\^ *-?\d+) *(?:gals?|m?g|(?:cm|mm|m)/s\S*)(?:$|[\s),;])` +
+		`|(?:\b(?:values?|data|samples|numbers|accelerations?)\b[^\d]*|(?:s2|s\^2|s/s|\bgals?|\bg) *)[x×*] *10(?:0*|\^ *-?\d+|\*\* *-?\d+)(?:$|[\s),;])` +
+		`|(?:\bin|\bunits?:?) +(?:m|milli|µ|micro)?v(?:olts?)?(?:$|[\s),;])|^(?:m|milli|micro)?volts?$|\b(?:digiti[sz]er|machine|recorder) +units\b`)
 	unchanged  = regexp.MustCompile(`(?i)\bnot\b|\bto be\b`)
 	multiplied = regexp.MustCompile(`(?i)\bmultiply\b.*\d|^multiplier\W*[\d.]|^scale factor\W*[\d.]+ *\(.*/`)
 	factor     = regexp.MustCompile(`(?i)^(?:(?:data|value|unit|amplitude) +)?(?:(?:scale|scaling|conversion|multiplication)(?: +(?:factor|constant))?|calibration +(?:factor|constant))[\s:=]+([-+]?[\d.]+(?:e[-+]?\d+)?)\W*$`)
@@ -101,7 +105,7 @@ func isScaled(text string) bool {
 		v, ok := parseNumber([]byte(m[1]))
 		return ok && v != 1
 	}
-	return multiplied.MatchString(text) || counted.MatchString(text) && (!recounted.MatchString(text) || unchanged.MatchString(text)) && !otherUnits.MatchString(text)
+	return multiplied.MatchString(text) || otherScale.MatchString(text) && !otherUnits.MatchString(text) || counted.MatchString(text) && (!recounted.MatchString(text) || unchanged.MatchString(text)) && !otherUnits.MatchString(text)
 }
 
 // checkUnit refuses a unit that was stated for all files where a line that is not
