@@ -27,7 +27,7 @@ func (h *plainHead) otherInWords(columns []plainColumn, hints Hints) error {
 		stated = stated || c.kind == columnValue && (c.unit.text != "" || strings.HasPrefix(commentKey(base), "acc"))
 	}
 	for _, l := range h.lines {
-		reason := spokenQuantity(l.text)
+		reason := spokenQuantity(l.words())
 		switch {
 		case reason == "" || stated:
 		case hints.Unit == "" || hints.UnitForAll:

@@ -134,7 +134,7 @@ func (l heading) otherThan(hint Unit) string {
 	if isScaled(l.words()) {
 		return "counts or a scale"
 	}
-	if l.states(peakKeys) || otherUnits.MatchString(l.text) {
+	if l.states(peakKeys) || otherUnits.MatchString(l.words()) {
 		return ""
 	}
 	if unit, ok := l.otherUnit(hint); ok {
@@ -205,8 +205,13 @@ func (l heading) otherUnit(hint Unit) (Unit, bool) {
 	return Unit{}, false
 }
 
+// maxWords is how many bytes of a line are looked through for what it says in words.
+const maxWords = 250
+
 // words is the line with blanks for underscores, which are no ends of words.
-func (l heading) words() string { return strings.ReplaceAll(l.text, "_", " ") }
+func (l heading) words() string {
+	return strings.ReplaceAll(l.text[:min(len(l.text), maxWords)], "_", " ")
+}
 
 // states reports whether the line has one of the keys.
 func (l heading) states(keys []string) bool {

@@ -128,11 +128,14 @@ func columnDirection(base, word string) (Orientation, bool) {
 	return Orientation{}, false
 }
 
+// maxUnitWord is longer than any unit is written.
+const maxUnitWord = 40
+
 // cutUnitWord splits the unit off a word that ends in one: acc_gal, ns_cm_s2,
 // acc_cms2. The unit is "" where it ends in none.
 func cutUnitWord(word string) (rest, unit string) {
 	for i := range word {
-		if word[i] != '_' || i == 0 {
+		if word[i] != '_' || i == 0 || len(word)-i > maxUnitWord {
 			continue
 		}
 		text := strings.ReplaceAll(word[i+1:], "_", "")
