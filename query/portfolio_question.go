@@ -8,6 +8,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline/spectrum"
+	"swaybook/query/design"
 )
 
 // Source says where the ordinates of a portfolio come from.
@@ -110,33 +111,52 @@ func (q PortfolioQuestion) withDefaults() (PortfolioQuestion, error) {
 }
 
 func (q PortfolioQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*PortfolioAnswer, error) {
-	s := source{snapshot: snapshot, method: q.Method}
+	w, err := q.begin(ctx, snapshot, 0)
+	if err != nil {
+		return nil, err
+	}
+	answer := &PortfolioAnswer{Percentiles: q.Percentiles, Ordinates: q.Ordinates, Extras: q.Extras, Rows: make([]PortfolioRow, len(w.plans))}
+	err = w.run(ctx, func(ctx context.Context, o *ordinates, from, to int) error {
+		return w.reduce(ctx, answer.Rows, o, from, to)
+	})
+	if err != nil {
+		return nil, err
+	}
+	if answer.Error, err = w.end(ctx); err != nil {
+		return nil, err
+	}
+	w.picked.report.Notes = append(w.picked.report.Notes, q.notes()...)
+	answer.Selection = w.picked.report
+	return answer, nil
+}
+
+// begin picks the motions and plans what is needed of them.
+func (q *PortfolioQuestion) begin(ctx context.Context, snapshot *db.Snapshot, details db.Details) (*portfolioWork, error) {
 	plans, err := q.plans(&snapshot.Generation.Grid)
 	if err != nil {
 		return nil, err
 	}
-	picked, err := pick(ctx, snapshot, q.Selection, db.DetailMotion)
+	picked, err := pick(ctx, snapshot, q.Selection, details|db.DetailMotion)
 	if err != nil {
 		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
-	answer := &PortfolioAnswer{Percentiles: q.Percentiles, Ordinates: q.Ordinates, Extras: q.Extras, Rows: make([]PortfolioRow, len(plans))}
-	work := portfolioWork{question: &q, source: &s, picked: picked, plans: plans, rows: answer.Rows, unfit: map[int]string{}}
-	if err := work.run(ctx); err != nil {
+	return &portfolioWork{question: q, source: &source{snapshot: snapshot, method: q.Method}, picked: picked, plans: plans, unfit: map[int]string{}}, nil
+}
+
+// end reports on what was done.
+func (w *portfolioWork) end(ctx context.Context) (*GridError, error) {
+	e, err := w.gridError(ctx)
+	if err != nil {
 		return nil, err
 	}
-	if answer.Error, err = work.gridError(ctx); err != nil {
+	if err := w.picked.leaveOut(w.unfit); err != nil {
 		return nil, err
 	}
-	if err := picked.leaveOut(work.unfit); err != nil {
-		return nil, err
+	if w.picked.ignoresBand {
+		w.picked.noteBand(0, 0)
 	}
-	if picked.ignoresBand {
-		picked.noteBand(0, 0)
-	}
-	picked.report.Notes = append(picked.report.Notes, q.notes()...)
-	answer.Selection = picked.report
-	return answer, nil
+	return e, nil
 }
 
 func (q *PortfolioQuestion) notes() []string {
@@ -187,7 +207,6 @@ type portfolioWork struct {
 	source   *source
 	picked   *picked
 	plans    []plan
-	rows     []PortfolioRow
 	unfit    map[int]string // motions that cannot be answered for, and why
 	grid     *gridSpectra   // of OrdinatesGrid
 }
@@ -195,7 +214,9 @@ type portfolioWork struct {
 // portfolioValues bounds the ordinates in memory at a time: 256 MB.
 const portfolioValues = 1 << 25
 
-func (w *portfolioWork) run(ctx context.Context) error {
+// run loads the ordinates part by part and has each part answered for: the structures of
+// plans from … to-1.
+func (w *portfolioWork) run(ctx context.Context, answer func(ctx context.Context, o *ordinates, from, to int) error) error {
 	motions := len(w.picked.motions)
 	for from := 0; from < len(w.plans); {
 		oscillators, to := gather(w.plans, from, max(1, portfolioValues/max(1, motions)))
@@ -203,7 +224,7 @@ func (w *portfolioWork) run(ctx context.Context) error {
 		if err != nil {
 			return err
 		}
-		if err := w.reduce(ctx, o, from, to); err != nil {
+		if err := answer(ctx, o, from, to); err != nil {
 			return err
 		}
 		from = to
@@ -259,13 +280,13 @@ func (w *portfolioWork) load(ctx context.Context, oscillators []spectrum.Oscilla
 }
 
 // reduce answers for the structures of plans from … to-1, side by side.
-func (w *portfolioWork) reduce(ctx context.Context, o *ordinates, from, to int) error {
+func (w *portfolioWork) reduce(ctx context.Context, rows []PortfolioRow, o *ordinates, from, to int) error {
 	workers := min(maxWorkers(), to-from)
 	sample := w.picked.sample()
 	return inParallel(ctx, workers, func(ctx context.Context, first int) error {
 		r := newReducer(sample, w.question.Percentiles, w.question.Extras)
 		for i := from + first; i < to && ctx.Err() == nil; i += workers {
-			w.rows[i] = w.plans[i].demand(r, o)
+			rows[i] = w.plans[i].demand(r, o)
 		}
 		return ctx.Err()
 	})
@@ -275,40 +296,63 @@ func (w *portfolioWork) reduce(ctx context.Context, o *ordinates, from, to int) 
 func (p *plan) demand(r *reducer, o *ordinates) PortfolioRow {
 	s := p.structure
 	row := PortfolioRow{Structure: s}
-	compare := func(name string, x *Reduction) { row.Limits = append(row.Limits, s.compare(r, name, x)...) }
-	d := r.extras.Design
+	compare := func(name string, x *Reduction) {
+		for _, l := range s.limitsOf(name) {
+			row.Limits = append(row.Limits, r.compare(l, x))
+		}
+	}
 	switch {
-	case len(s.Modes) > 0:
-		p.eachCombined(o, r.at, d, r.reducing(&row.Quantities, compare))
-	case s.BandWidth > 0:
-		s.each(o, p.at[:1], r.at, d, r.reducing(&row.Quantities, nil))
+	case s.BandWidth > 0 && len(s.Modes) == 0:
+		s.each(o, p.at[:1], r.at, r.extras.Design, r.reducing(&row.Quantities, nil))
 		row.Band = &DemandBand{FromS: p.band.FromS, ToS: p.band.ToS}
-		s.each(o, p.at[1:], r.at, d, r.reducing(&row.Band.Quantities, compare))
+		p.compared(o, r.at, r.extras.Design, r.reducing(&row.Band.Quantities, compare))
 	default:
-		s.each(o, p.at[:1], r.at, d, r.reducing(&row.Quantities, compare))
+		p.compared(o, r.at, r.extras.Design, r.reducing(&row.Quantities, compare))
 	}
 	return row
 }
 
-// compare sets a quantity that the reducer has just reduced beside the capacities that
-// limit it.
-func (s *PortfolioStructure) compare(r *reducer, name string, x *Reduction) (out []LimitRatio) {
-	add := func(limit string, given *float64, inUnit float64) {
-		if given == nil {
-			return
-		}
-		ratio := LimitRatio{Name: limit, Limit: *given, Max: x.Max / inUnit, Above: r.above(inUnit)}
-		for _, p := range x.Percentiles {
-			ratio.Percentiles = append(ratio.Percentiles, p/inUnit)
-		}
-		out = append(out, ratio)
+// compared gives what is set beside capacities: over the band where there is one, and
+// combined where there are modes.
+func (p *plan) compared(o *ordinates, at []int, d *design.Spectrum, give forEach) {
+	switch s := p.structure; {
+	case len(s.Modes) > 0:
+		p.eachCombined(o, at, d, give)
+	case s.BandWidth > 0:
+		s.each(o, p.at[1:], at, d, give)
+	default:
+		s.each(o, p.at[:1], at, d, give)
 	}
-	switch name {
+}
+
+// limit is a capacity, as it was given and in the unit of the quantity that it limits.
+type limit struct {
+	name          string
+	given, inUnit float64
+}
+
+// limitsOf are the capacities that limit a quantity.
+func (s *PortfolioStructure) limitsOf(quantity string) (out []limit) {
+	add := func(name string, given *float64, per float64) {
+		if given != nil {
+			out = append(out, limit{name, *given, *given * per})
+		}
+	}
+	switch quantity {
 	case "sd_m":
-		add("displacement", s.Limits.DisplacementM, orNaN(s.Limits.DisplacementM))
-		add("drift", s.Limits.DriftRatio, orNaN(s.Limits.DriftRatio)*orNaN(s.HeightM))
+		add("displacement", s.Limits.DisplacementM, 1)
+		add("drift", s.Limits.DriftRatio, orNaN(s.HeightM))
 	case "base_shear_n":
-		add("base_shear", s.Limits.BaseShearN, orNaN(s.Limits.BaseShearN))
+		add("base_shear", s.Limits.BaseShearN, 1)
+	}
+	return out
+}
+
+// compare sets a quantity that the reducer has just reduced beside a capacity.
+func (r *reducer) compare(l limit, x *Reduction) LimitRatio {
+	out := LimitRatio{Name: l.name, Limit: l.given, Max: x.Max / l.inUnit, Above: r.above(l.inUnit)}
+	for _, p := range x.Percentiles {
+		out.Percentiles = append(out.Percentiles, p/l.inUnit)
 	}
 	return out
 }
