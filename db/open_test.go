@@ -213,7 +213,7 @@ func TestAnotherSolversStoreIsNotMigrated(t *testing.T) {
 // The migration that came with the version of the steps wrote the canonical form of the one
 // recipe that has none, with its hash.
 func TestAsDeliveredIsWhatTheMigrationWrote(t *testing.T) {
-	step, err := migrations.FS.ReadFile("00008_renew_recipes_again.sql")
+	step, err := migrations.FS.ReadFile("00009_renew_recipes_for_arrivals.sql")
 	if err != nil {
 		t.Fatal(err)
 	}

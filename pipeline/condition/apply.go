@@ -85,6 +85,9 @@ type work struct {
 	noise    ratios
 	hasNoise bool
 	asked    bool
+	// onsetAt is the onset, once the step at hand has asked for it.
+	onsetAt  int
+	hasOnset bool
 	// asks says that a step of the recipe will.
 	asks bool
 	// highPassed says that a high-pass filter was applied here.
@@ -127,6 +130,7 @@ func (w *work) recorded() []float64 {
 func (w *work) nyquist() float64 { return 0.5 / (w.StepS * float64(w.Oversampled)) }
 
 func (w *work) do(s Step) error {
+	w.onsetAt, w.hasOnset = 0, false
 	switch s.Do {
 	case KindHighPass, KindLowPass, KindBandPass, KindPad, KindCheck, KindTaper:
 	default:

@@ -20,32 +20,25 @@ const (
 	restFrom = 0.99
 )
 
-// quietSamples is the number of samples before the onset, less the guard, 0 where they
-// are too few.
-func quietSamples(x []float64, stepS float64) int {
-	n := onsetOf(x, stepS)
-	if float64(n)*stepS < leastNoiseS {
-		return 0
+// onset is the recorded sample before which nothing is motion, a taper's first bell left
+// out; a step looks for it once.
+func (w *work) onset() int {
+	if !w.hasOnset && w.tapered < len(w.recorded()) {
+		arrival := signal.Arrival(w.recorded()[w.tapered:], w.StepS)
+		w.onsetAt = w.tapered + max(0, arrival-int(math.Ceil(guardS/w.StepS)))
+		w.hasOnset = true
 	}
-	return n
-}
-
-// onsetOf is the sample before which nothing is motion.
-func onsetOf(x []float64, stepS float64) int {
-	return max(0, signal.Arrival(x, stepS)-int(math.Ceil(guardS/stepS)))
+	return w.onsetAt
 }
 
 // quiet are the recorded samples from which the noise is told: what a taper has made
 // small is left out. They are none where they are too few.
 func (w *work) quiet() (from, to int) {
-	if w.tapered >= len(w.recorded()) {
+	onset := w.onset()
+	if float64(onset-w.tapered)*w.StepS < leastNoiseS {
 		return 0, 0
 	}
-	n := quietSamples(w.recorded()[w.tapered:], w.StepS)
-	if n == 0 {
-		return 0, 0
-	}
-	return w.tapered, w.tapered + n
+	return w.tapered, onset
 }
 
 // roundingPower is the mean square of what rounding to the resolution adds.
@@ -75,7 +68,7 @@ func (w *work) taper(share float64) {
 	if len(x) == 0 {
 		return
 	}
-	onset := onsetOf(x, w.StepS)
+	onset := w.onset()
 	first := w.bell(share, onset)
 	end := min(w.endOf(0, onset), signal.EndOf(x, w.StepS, restFrom))
 	signal.Taper(x, first, w.bell(share, len(x)-end))

@@ -57,7 +57,8 @@ func TestBaselineStepsComeBack(t *testing.T) {
 				if worst, unmended = max(worst, mended), max(unmended, off(without, clean, x)); mended > limit {
 					t.Errorf("seed %d, %g m/s² from %g s: off by %.3g", seed, size, atS, mended)
 				}
-				o, ok := signal.FindOffset(x, stepS, quietSamples(x, stepS), signal.EndOf(x, stepS, restFrom))
+				_, quiet := (&work{Conditioned: Conditioned{Acceleration: x, StepS: stepS, Oversampled: 1}}).quiet()
+				o, ok := signal.FindOffset(x, stepS, quiet, signal.EndOf(x, stepS, restFrom))
 				if !ok || math.Abs(o.Size-size) > 0.001 || math.Abs(o.TimeS-atS) > 0.1 {
 					t.Errorf("seed %d, %g m/s² from %g s: %+v, %v", seed, size, atS, o, ok)
 				}

@@ -77,7 +77,7 @@ func (r Recipe) Canonical() string {
 // Version is that of what steps do. It is part of every recipe's hash: raise it with a
 // change that moves bits, so that what was computed before stays a generation of its own, with
 // a migration that renews AsDelivered, of which no bit moves.
-const Version = 3
+const Version = 4
 
 type canonical struct {
 	Version int `json:"version"`

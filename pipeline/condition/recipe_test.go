@@ -30,12 +30,12 @@ func TestParse(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	const want = `{"version":3,"name":"northwater-quays","states":["raw","unknown"],"steps":[` +
+	const want = `{"version":4,"name":"northwater-quays","states":["raw","unknown"],"steps":[` +
 		`{"do":"trend","degree":1},{"do":"high-pass","order":4,"corner_hz":0.15},{"do":"oversample","factor":4}]}`
 	if got := r.Canonical(); got != want {
 		t.Errorf("got %s, want %s", got, want)
 	}
-	if _, err := FromCanonical(strings.Replace(want, ":3,", ":2,", 1)); !errors.Is(err, ErrOtherVersion) {
+	if _, err := FromCanonical(strings.Replace(want, ":4,", ":3,", 1)); !errors.Is(err, ErrOtherVersion) {
 		t.Errorf("of another version: %v", err)
 	}
 	if !r.AppliesTo("unknown") || r.AppliesTo("corrected") {

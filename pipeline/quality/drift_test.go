@@ -51,7 +51,8 @@ func TestDriftHidesNothing(t *testing.T) {
 			found.countOf(FlagSeveralEvents, Assess(edit(slices.Concat(x, x), d.add), stepS, 0))
 		}
 		for _, x := range recorded(0.15) {
-			found.countOf(FlagLowSignal, Assess(edit(x, d.add), stepS, quietS/stepS))
+			y := edit(x, d.add)
+			found.countOf(FlagLowSignal, Assess(y, stepS, signal.Arrival(y, stepS)))
 		}
 		t.Logf("%s: of %d %v", d.name, all, found)
 		for _, flag := range []string{FlagLateStart, FlagEarlyEnd, FlagSeveralEvents, FlagLowSignal} {

@@ -35,7 +35,7 @@ func (a *assessment) extent() {
 	if quietS := a.quietS(); quietS < preEventS {
 		a.add(FlagNoPreEvent, quietS, preEventS, "%.2g s before the arrival", quietS)
 	}
-	rms := windows(a.y, a.second())
+	rms := signal.RootMeanSquares(a.y, a.second())
 	if len(rms) < 3 {
 		return
 	}
@@ -56,20 +56,6 @@ func (a *assessment) quietS() float64 { return float64(a.onset) * a.stepS }
 
 // second is the number of samples of a window.
 func (a *assessment) second() int { return max(1, int(math.Round(windowS/a.stepS))) }
-
-// windows are the root mean squares of n samples each; what is left over at the end is in
-// none.
-func windows(y []float64, n int) []float64 {
-	var out []float64
-	for ; len(y) >= n; y = y[n:] {
-		out = append(out, rootMeanSquare(y[:n]))
-	}
-	return out
-}
-
-func rootMeanSquare(y []float64) float64 {
-	return math.Sqrt(squaresAbout(y, 0) / float64(len(y)))
-}
 
 // again returns the window in which strong motion comes back after restS of rest.
 func again(rms []float64, top float64) (at int, ok bool) {

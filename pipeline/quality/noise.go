@@ -27,7 +27,7 @@ func (a *assessment) standsOut() {
 
 // unevenness is the greatest root mean square of a part of y over the least.
 func unevenness(y []float64) float64 {
-	parts := windows(y, len(y)/unevenParts)[:unevenParts]
+	parts := signal.RootMeanSquares(y, len(y)/unevenParts)[:unevenParts]
 	return slices.Max(parts) / slices.Min(parts)
 }
 

@@ -3,6 +3,8 @@ package quality
 import (
 	"math"
 	"testing"
+
+	"swaybook/pipeline/signal"
 )
 
 // lowSignal reports whether FlagLowSignal is raised.
@@ -65,6 +67,24 @@ func TestMotionIsUneven(t *testing.T) {
 		}
 		if t.Logf("%s: the strongest part of %d has %.3g times the quietest at least", cut.name, all, least); all < 10 {
 			t.Errorf("%s: %d motions only", cut.name, all)
+		}
+	}
+}
+
+// What begins in the strong motion has no noise before it: too little precedes the arrival,
+// and the motion is not measured by its own beginning.
+func TestLateTriggersAreNoNoise(t *testing.T) {
+	for _, share := range []float64{0.005, 0.05, 0.2} {
+		found, all := has{}, 0
+		for _, x := range recorded(1e-3) {
+			y := x[after(x, share):]
+			onset := signal.Arrival(y, stepS)
+			found.count(Assess(y, stepS, onset))
+			all++
+		}
+		t.Logf("less %g of the squares: of %d %v", share, all, found)
+		if found[FlagLowSignal] > 0 || found[FlagNoPreEvent] < found[FlagLateStart] {
+			t.Errorf("less %g of the squares: of %d %v", share, all, found)
 		}
 	}
 }

@@ -34,8 +34,8 @@ func (a *assessment) still() {
 // rounding counted.
 func (a *assessment) goesOn(n int) (share float64, ok bool) {
 	end := len(a.y)
-	last := rootMeanSquare(a.y[end-a.second():])
-	share = last / signal.Greatest(windows(a.y, a.second()))
+	last := signal.RootMeanSquare(a.y[end-a.second():])
+	share = last / signal.Greatest(signal.RootMeanSquares(a.y, a.second()))
 	if !(share >= quietShare) || last < overNoise*a.noise() {
 		return share, false
 	}

@@ -103,15 +103,6 @@ func Onset(x []float64) int {
 	return best
 }
 
-// arrivalCornerHz is of the high-pass filter behind which an arrival is looked for, so
-// that drift is none.
-const arrivalCornerHz = 1.0
-
-// Arrival is the Onset of a motion x in which slow changes do not count: behind a causal
-// high-pass filter of first order at 1 Hz, or at a fifth of half the sampling rate where
-// that is lower. x is not empty.
-func Arrival(x []float64, stepS float64) int { return Onset(quick(x, stepS)) }
-
 // quick is what x has besides slow changes.
 func quick(x []float64, stepS float64) []float64 {
 	y := append([]float64(nil), x...)
