@@ -24,7 +24,7 @@ const (
 // out; a step looks for it once.
 func (w *work) onset() int {
 	if !w.hasOnset && w.tapered < len(w.recorded()) {
-		arrival := signal.Arrival(w.recorded()[w.tapered:], w.StepS)
+		arrival := signal.ArrivalOver(w.recorded()[w.tapered:], w.StepS, signal.RoundingDeviation(w.resolution))
 		w.onsetAt = w.tapered + max(0, arrival-int(math.Ceil(guardS/w.StepS)))
 		w.hasOnset = true
 	}
@@ -42,10 +42,10 @@ func (w *work) quiet() (from, to int) {
 }
 
 // roundingPower is the mean square of what rounding to the resolution adds.
-//
-// Source: W. R. Bennett, Spectra of Quantized Signals, Bell System Tech. J. 27, 1948, for
-// an error that is even over a step (from memory).
-func roundingPower(resolution float64) float64 { return resolution * resolution / 12 }
+func roundingPower(resolution float64) float64 {
+	d := signal.RoundingDeviation(resolution)
+	return d * d
+}
 
 // endOf is the recorded sample at which a motion is lost in the noise, or in rounding; the
 // samples from quiet to from are noise.

@@ -38,12 +38,5 @@ func (a *assessment) noise() float64 {
 		return 0
 	}
 	quiet := a.y[:min(a.onset, len(a.y))]
-	return max(math.Sqrt(squaresAbout(quiet, signal.Mean(quiet))/float64(len(quiet))), a.rounding())
+	return max(math.Sqrt(squaresAbout(quiet, signal.Mean(quiet))/float64(len(quiet))), signal.RoundingDeviation(signal.Resolution(a.x)))
 }
-
-// rounding is the standard deviation of what rounding to the resolution adds: the
-// resolution over √12.
-//
-// Source: W. R. Bennett, Spectra of Quantized Signals, Bell System Technical Journal 27(3),
-// 1948 (from memory).
-func (a *assessment) rounding() float64 { return signal.Resolution(a.x) / math.Sqrt(12) }

@@ -30,6 +30,12 @@ const (
 // latter, so the Onset of what precedes is looked for again, and taken as long as the motion
 // stands out of what is before. x is not empty.
 func Arrival(x []float64, stepS float64) int {
+	return ArrivalOver(x, stepS, RoundingDeviation(Resolution(x)))
+}
+
+// ArrivalOver is Arrival of a motion that has been rounded and changed since: rounding is
+// the standard deviation that this adds.
+func ArrivalOver(x []float64, stepS, rounding float64) int {
 	y := quick(x, stepS)
 	if beginsStrong(x, y, stepS) {
 		return 0
@@ -38,7 +44,7 @@ func Arrival(x []float64, stepS float64) int {
 	lasts := max(2, int(math.Round(lastsS/stepS)))
 	for arrival > lasts {
 		earlier := Onset(y[:arrival-lasts])
-		if float64(earlier)*stepS < leastBeforeS || !standsOut(y[:earlier+lasts], earlier) {
+		if float64(earlier)*stepS < leastBeforeS || !standsOut(y[:earlier+lasts], earlier, rounding) {
 			break
 		}
 		arrival = earlier
@@ -47,9 +53,10 @@ func Arrival(x []float64, stepS float64) int {
 }
 
 // standsOut reports whether y has overBefore times the amplitude from the sample at on that
-// it has before, in both halves, so that no single sample makes it so.
-func standsOut(y []float64, at int) bool {
-	limit, middle := overBefore*RootMeanSquare(y[:at]), (at+len(y))/2
+// it has before, or that rounding adds, in both halves, so that no single sample makes it so,
+// and no noise that just reaches the next step of a digitiser.
+func standsOut(y []float64, at int, rounding float64) bool {
+	limit, middle := overBefore*max(rounding, RootMeanSquare(y[:at])), (at+len(y))/2
 	return min(RootMeanSquare(y[at:middle]), RootMeanSquare(y[middle:])) > limit
 }
 

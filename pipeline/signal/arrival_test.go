@@ -96,12 +96,22 @@ func TestArrivalIsOfTheFirstWaves(t *testing.T) {
 	}
 }
 
-// Noise before a clean arrival is none, pink or white or with a single sample that stands
-// out, long or short.
+// rounded adds noise that seldom reaches the next step of a digitiser.
+func rounded(x []float64, deviation float64, seed uint64) []float64 {
+	white(x, deviation, seed)
+	step := 5 * deviation
+	for i, v := range x {
+		x[i] = step * math.Round(v/step)
+	}
+	return x
+}
+
+// Noise before a clean arrival is none, pink or white, rounded or with a single sample that
+// stands out, long or short.
 func TestNoiseIsNoArrival(t *testing.T) {
 	const stepS, count = 0.01, 200
 	for _, preS := range []float64{3, 20, 60} {
-		for name, noise := range map[string]func([]float64, float64, uint64) []float64{"white": white, "pink": pink, "spike": func(x []float64, deviation float64, seed uint64) []float64 {
+		for name, noise := range map[string]func([]float64, float64, uint64) []float64{"white": white, "pink": pink, "rounded": rounded, "spike": func(x []float64, deviation float64, seed uint64) []float64 {
 			x[int(0.6*preS/stepS)] += 100 * deviation
 			return white(x, deviation, seed)
 		}} {

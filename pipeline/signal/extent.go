@@ -44,3 +44,10 @@ func Resolution(x []float64) float64 {
 	}
 	return least
 }
+
+// RoundingDeviation is the standard deviation of what rounding to a resolution adds: the
+// resolution over √12, of an error that is even over a step.
+//
+// Source: W. R. Bennett, Spectra of Quantized Signals, Bell System Technical Journal 27(3),
+// 1948 (from memory).
+func RoundingDeviation(resolution float64) float64 { return resolution / math.Sqrt(12) }
