@@ -47,6 +47,18 @@ func roundingPower(resolution float64) float64 {
 	return d * d
 }
 
+// stallPower is the power by frequency, over lengthS, of a level that is rounded away where
+// the ground is quiet, and is there where it moves: a boxcar of half the resolution, the
+// most there is, over the motion, which lasts lengthS. Its Fourier amplitude is
+//
+//	|B(f)| = resolution/2·|sin(π·f·lengthS)|/(π·f) ≤ resolution/2·min(lengthS, 1/(π·f)).
+//
+// Noise of half a step before the motion keeps the level (dither), and there is none.
+func stallPower(resolution, frequencyHz, lengthS float64) float64 {
+	amplitude := resolution / 2 * min(lengthS, 1/(math.Pi*frequencyHz))
+	return 2 * amplitude * amplitude / lengthS
+}
+
 // endOf is the recorded sample at which a motion is lost in the noise, or in rounding; the
 // samples from quiet to from are noise.
 func (w *work) endOf(quiet, from int) int {

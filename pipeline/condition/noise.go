@@ -43,14 +43,25 @@ func (w *work) ratios() (r ratios, ok bool) {
 	noise := signal.PowerOf(x[quiet:from], w.StepS).Smooth(r.frequencyHz, smoothing)
 	motion := signal.PowerOf(x[from:to], w.StepS).Smooth(r.frequencyHz, smoothing)
 	rounding := roundingPower(w.resolution) / nyquist
+	stalls := w.stalls(quiet, from)
 	top := 0.0
 	for k := range r.frequencyHz {
-		r.ratio = append(r.ratio, math.Sqrt(motion[k]/max(noise[k], rounding)))
+		other := max(noise[k], rounding)
+		if stalls {
+			other += stallPower(w.resolution, r.frequencyHz[k], float64(to-from)*w.StepS)
+		}
+		r.ratio = append(r.ratio, math.Sqrt(motion[k]/other))
 		if motion[k] > top {
 			top, r.strongest = motion[k], k
 		}
 	}
 	return r, true
+}
+
+// stalls reports whether the noise from one sample to another is too weak to keep the level
+// that rounding takes: its standard deviation, slow changes left out, is below half a step.
+func (w *work) stalls(from, to int) bool {
+	return signal.QuickDeviation(w.recorded()[from:to], w.StepS) < w.resolution/2
 }
 
 // lowCorner is the lowest frequency from which on the motion stands out, which is none

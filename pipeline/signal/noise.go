@@ -161,3 +161,7 @@ func variancesBackward(x []float64) []float64 {
 	}
 	return out
 }
+
+// QuickDeviation is the root mean square of x without slow changes, as for Arrival. x is not
+// empty.
+func QuickDeviation(x []float64, stepS float64) float64 { return RootMeanSquare(quick(x, stepS)) }
