@@ -15,15 +15,8 @@ const quietS = 15
 // invented is a motion of a greatest acceleration of 1 m/s² after quietS of rest (package
 // stochastic), by magnitude and distance in m.
 func invented(magnitude, distanceM float64, seed uint64) []float64 {
-	p := stochastic.Params{
-		Source: stochastic.Source{Magnitude: magnitude, StressDropPa: 8e6, ShearVelocityMPS: 3500, DensityKGM3: 2800,
-			Partition: stochastic.HorizontalPartition},
-		Path: stochastic.Path{DistanceM: stochastic.EffectiveDistance(magnitude, distanceM), BreakM: 70e3, FarExponent: 0.5,
-			Q0: 150, QExponent: 0.5, VelocityMPS: 3500, DurationSPerM: 5e-5},
-		Site:     stochastic.Site{Vs30MPS: 450, KappaS: 0.035},
-		Window:   stochastic.StandardWindow(),
-		LowCutHz: 0.05, HighCutHz: 40, OnsetS: quietS,
-	}
+	p := stochastic.Example(magnitude, distanceM)
+	p.LowCutHz, p.HighCutHz, p.OnsetS = 0.05, 40, quietS
 	if err := p.Validate(); err != nil {
 		panic(err)
 	}

@@ -14,15 +14,8 @@ import (
 // sample (package stochastic), with nothing before.
 func earthquake(magnitude, distanceM, onsetS, peak, stepS float64, seed uint64) []float64 {
 	const rungS = 45 // the low cut's filter has no phase shift and rings ahead
-	p := stochastic.Params{
-		Source: stochastic.Source{Magnitude: magnitude, StressDropPa: 8e6, ShearVelocityMPS: 3500, DensityKGM3: 2800,
-			Partition: stochastic.HorizontalPartition},
-		Path: stochastic.Path{DistanceM: stochastic.EffectiveDistance(magnitude, distanceM), BreakM: 70e3, FarExponent: 0.5,
-			Q0: 150, QExponent: 0.5, VelocityMPS: 3500, DurationSPerM: 5e-5},
-		Site:     stochastic.Site{Vs30MPS: 450, KappaS: 0.035},
-		Window:   stochastic.StandardWindow(),
-		LowCutHz: 0.05, HighCutHz: 0.4 / stepS, OnsetS: rungS + onsetS,
-	}
+	p := stochastic.Example(magnitude, distanceM)
+	p.LowCutHz, p.HighCutHz, p.OnsetS = 0.05, 0.4/stepS, rungS+onsetS
 	if err := p.Validate(); err != nil {
 		panic(err)
 	}
