@@ -3,6 +3,7 @@ package pipeline
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/pipeline/condition"
@@ -62,7 +63,9 @@ func conditionedFindings(m condition.Conditioned, arrivalS float64) []db.Finding
 		out = append(out, db.Finding(e))
 	}
 	for _, f := range quality.AssessConditioned(m.Acceleration, m.StepS, onset) {
-		out = append(out, db.Finding(f))
+		if !slices.ContainsFunc(out, func(g db.Finding) bool { return g.Flag == f.Flag }) {
+			out = append(out, db.Finding(f)) // a step may have found it already
+		}
 	}
 	return out
 }

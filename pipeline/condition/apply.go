@@ -35,7 +35,7 @@ type Conditioned struct {
 	// LongS is the longest period in s that the recipe's own high-pass filter leaves and
 	// the length of what was recorded can tell, +Inf where nothing was done.
 	LongS float64
-	// Exceeded are the limits of the recipe's checks that the motion exceeds.
+	// Exceeded are the limits of the recipe's steps that the motion exceeds.
 	Exceeded []Excess
 	// IsChanged is false where the component was left as it was delivered.
 	IsChanged bool

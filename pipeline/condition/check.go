@@ -7,13 +7,14 @@ import (
 	"swaybook/pipeline/signal"
 )
 
-// The flags that the limits of a recipe can raise.
+// The flags that the steps of a recipe can raise.
 const (
+	FlagBaselineStep      = "baseline_step"      // a change of the level that is not taken off
 	FlagFinalVelocity     = "final_velocity"     // the ground does not come to rest
 	FlagFinalDisplacement = "final_displacement" // it comes to rest elsewhere, or drifts
 )
 
-// Excess is a limit of the recipe that the motion exceeds.
+// Excess is a limit of the recipe's steps that the motion exceeds.
 type Excess struct {
 	Flag  string
 	Value float64 // what was measured

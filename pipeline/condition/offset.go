@@ -1,6 +1,7 @@
 package condition
 
 import (
+	"fmt"
 	"math"
 
 	"swaybook/pipeline/signal"
@@ -13,13 +14,17 @@ const (
 	// offsetGain is by what factor at least a step must lessen the squares of the velocity
 	// that remains beside a parabola.
 	offsetGain = 10
+	// jumpShare is how much of the motion's greatest velocity a step that is noted, where it
+	// cannot be taken off, must make.
+	jumpShare = 0.1
 	// offsetQuietS and offsetRestS are the least lengths before and behind the motion in s.
 	offsetQuietS = 10.0
 	offsetRestS  = 20.0
 )
 
 // takeOffset takes off a step of the baseline of at least the step's share of PGA, where
-// there is one.
+// there is one, and notes where the velocity behind the motion is not that before it and no
+// such step is the cause: several steps, one outside the motion, or a slow one.
 func (w *work) takeOffset(s Step) {
 	x := w.recorded()
 	_, quiet := w.quiet()
@@ -31,10 +36,14 @@ func (w *work) takeOffset(s Step) {
 		return
 	}
 	o, ok := signal.FindOffset(x, w.StepS, quiet, rest)
-	if !ok || o.Gain < offsetGain || math.Abs(o.Size) < s.Share*signal.Greatest(x) {
-		return
-	}
-	for i := int(math.Ceil(o.TimeS / w.StepS)); i < len(x); i++ {
-		x[i] -= o.Size
+	switch {
+	case o.Gain < offsetGain:
+	case ok && math.Abs(o.Size) >= s.Share*signal.Greatest(x):
+		for i := int(math.Ceil(o.TimeS / w.StepS)); i < len(x); i++ {
+			x[i] -= o.Size
+		}
+	case o.Velocity >= jumpShare*o.Peak:
+		share := o.Velocity / o.Peak
+		w.Exceeded = append(w.Exceeded, Excess{FlagBaselineStep, share, jumpShare, fmt.Sprintf("the level changes in the motion: the velocity behind it is off by up to %.2g of PGV", share)})
 	}
 }

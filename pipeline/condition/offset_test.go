@@ -2,6 +2,7 @@ package condition
 
 import (
 	"math"
+	"math/rand/v2"
 	"slices"
 	"testing"
 
@@ -93,6 +94,9 @@ func TestNoStepIsInvented(t *testing.T) {
 				if last := len(x) - 1; got.Acceleration[last] != x[last] {
 					t.Errorf("%s from %g Hz, seed %d: a step of %g is taken off", name, lowHz, seed, x[last]-got.Acceleration[last])
 				}
+				if len(got.Exceeded) > 0 {
+					t.Errorf("%s from %g Hz, seed %d: %s", name, lowHz, seed, got.Exceeded[0].Words)
+				}
 			}
 		}
 	}
@@ -111,4 +115,84 @@ func TestStepsOfLongMotions(t *testing.T) {
 			}
 		}
 	}
+}
+
+// A baseline that changes as no single step in the motion does is noted, and nothing else:
+// of two steps the spectrum is off by far more than the filter's shape tells.
+func TestJumpsAreNoted(t *testing.T) {
+	const stepS = 0.01
+	for _, test := range []struct {
+		name  string
+		level func(behindS float64) float64 // of PGA, by the time behind the arrival
+		noted bool
+	}{
+		{"none", func(float64) float64 { return 0 }, false},
+		{"one step", func(s float64) float64 { return after(s, 2, 0.02) }, false},
+		{"two steps", func(s float64) float64 { return after(s, 4, 0.01) - after(s, 9, 0.006) }, true},
+		{"there and back", func(s float64) float64 { return after(s, 2, 0.02) - after(s, 7, 0.02) }, true},
+	} {
+		noted, all := 0, 0
+		worst := 0.0
+		for _, magnitude := range []float64{5.5, 6, 6.5, 7, 7.5} {
+			for seed := range uint64(4) {
+				clean := earthquake(magnitude, 30e3, 20, stepS, seed)
+				x := recorded(seed, clean)
+				for i := range x {
+					u := float64(i) / float64(len(x))
+					x[i] += 0.02*u*u + 2*test.level(float64(i)*stepS-20)
+				}
+				got := conditioned(t, Standard(), x, stepS)
+				o := off{}
+				fromS, toS := got.UsableBand()
+				o.compare(t, fromS, toS, Conditioned{Acceleration: clean, StepS: stepS}, got)
+				_, most := o.upTo(1)
+				all++
+				worst = max(worst, most)
+				if slices.ContainsFunc(got.Exceeded, func(e Excess) bool { return e.Flag == FlagBaselineStep }) {
+					noted++
+				}
+			}
+		}
+		t.Logf("%s: noted in %d of %d, off by %.2g at most", test.name, noted, all, worst)
+		if want := map[bool]int{true: all}[test.noted]; noted != want {
+			t.Errorf("%s: noted in %d of %d, want %d", test.name, noted, all, want)
+		}
+	}
+}
+
+// Long noise is no jump: it is random how far its integral runs away, but not a line.
+func TestNoJumpIsInvented(t *testing.T) {
+	const stepS = 0.01
+	for _, magnitude := range []float64{4, 5, 6, 6.5, 7, 7.5} {
+		for seed := range uint64(8) {
+			clean := earthquake(magnitude, 50e3, 20, stepS, seed)
+			for _, deviation := range []float64{0, 0.001, 0.01} {
+				x := recorded(seed, clean)
+				random := rand.New(rand.NewPCG(seed, 79))
+				var held [12]float64 // pink noise, of up to 40 s
+				for i := range x {
+					for k := range held {
+						if i%(1<<k) == 0 {
+							held[k] = random.NormFloat64()
+						}
+						x[i] += deviation / math.Sqrt(float64(len(held))) * held[k]
+					}
+				}
+				cut := signal.EndOf(x, stepS, restFrom) + int(25/stepS)
+				for name, x := range map[string][]float64{"whole": x, "cut": x[:min(len(x), cut)], "short noise": x[900:]} {
+					if got := conditioned(t, step(Step{Do: KindOffset, Share: 0.005}), x, stepS); len(got.Exceeded) > 0 {
+						t.Errorf("M %g, seed %d, noise of %g m/s², %s: %s", magnitude, seed, deviation, name, got.Exceeded[0].Words)
+					}
+				}
+			}
+		}
+	}
+}
+
+// after is size from a time on.
+func after(s, from, size float64) float64 {
+	if s < from {
+		return 0
+	}
+	return size
 }

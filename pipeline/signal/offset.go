@@ -9,6 +9,10 @@ type Offset struct {
 	// Gain is by what factor the step lessens the squares of the velocity, where the ground
 	// is at rest, that a parabola alone would leave.
 	Gain float64
+	// Velocity is the greatest one that the step makes where the ground is at rest behind the
+	// motion, and Peak that of the motion beside the parabola's, both in units of acceleration
+	// times s.
+	Velocity, Peak float64
 }
 
 // offsetTerms are the three coefficients of the velocity's polynomial, and the two of a
@@ -23,8 +27,8 @@ const offsetTerms = 5
 //	v(t) = … + Size·(t - TimeS)             behind it,
 //
 // which is linear in c0, c1, c2, Size and Size·TimeS, and is fitted by least squares. ok is
-// false where the parts are too short to tell, or where the step would be outside the
-// motion between them.
+// false where the parts are too short to tell, of which o is zero, or where the step would
+// be outside the motion between them.
 //
 // Source: D. M. Boore, Effect of baseline corrections on displacements and response spectra
 // for several recordings of the 1999 Chi-Chi, Taiwan, earthquake, BSSA 91(5), 2001, for a
@@ -38,15 +42,9 @@ func FindOffset(x []float64, stepS float64, quiet, rest int) (o Offset, ok bool)
 	v := Integrate(nil, x, stepS)
 	var f fit
 	for i, y := range v {
-		if i >= quiet && i < rest {
-			continue
+		if i < quiet || i >= rest {
+			f.add(termsAt(i, n, i >= rest), y)
 		}
-		t := float64(i) / float64(n) // in lengths of the record, so that the sums are of one size
-		terms := [offsetTerms]float64{t, float64(t * t), float64(float64(t*t) * t)}
-		if i >= rest {
-			terms[3], terms[4] = t, -1
-		}
-		f.add(terms, y)
 	}
 	with, leftWith, okWith := f.solve(offsetTerms)
 	_, left, okWithout := f.solve(offsetTerms - 2)
@@ -55,7 +53,26 @@ func FindOffset(x []float64, stepS float64, quiet, rest int) (o Offset, ok bool)
 	}
 	lengthS := float64(n) * stepS
 	o = Offset{Size: with[3] / lengthS, TimeS: with[4] / with[3] * lengthS, Gain: left / leftWith}
+	o.Velocity = max(math.Abs(float64(with[3]*termsAt(rest, n, true)[3])-with[4]), math.Abs(float64(with[3]*termsAt(n-1, n, true)[3])-with[4]))
+	for i := quiet; i < rest; i++ {
+		y := v[i]
+		for k, term := range termsAt(i, n, false) {
+			y -= float64(with[k] * term)
+		}
+		o.Peak = max(o.Peak, math.Abs(y))
+	}
 	return o, o.TimeS >= float64(quiet)*stepS && o.TimeS <= float64(rest)*stepS
+}
+
+// termsAt are what the coefficients are multiplied by at the sample i of n. Time counts in
+// lengths of the record, so that sums of squares are of one size.
+func termsAt(i, n int, behind bool) (terms [offsetTerms]float64) {
+	t := float64(i) / float64(n)
+	terms[0], terms[1], terms[2] = t, float64(t*t), float64(float64(t*t)*t)
+	if behind {
+		terms[3], terms[4] = t, -1
+	}
+	return terms
 }
 
 // fit has the normal equations of a least-squares fit.
