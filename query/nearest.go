@@ -79,8 +79,10 @@ func (q NearestQuestion) Ask(ctx context.Context, store *db.Store) (*NearestAnsw
 	}
 	q.PortfolioQuestion = base
 	answer := &NearestAnswer{Ordinates: q.Ordinates}
-	err = view(ctx, store, func(snapshot *db.Snapshot) error { return q.answer(ctx, snapshot, answer) })
-	return answer, err
+	if err := view(ctx, store, func(snapshot *db.Snapshot) error { return q.answer(ctx, snapshot, answer) }); err != nil {
+		return nil, err
+	}
+	return answer, nil
 }
 
 func (q *NearestQuestion) answer(ctx context.Context, snapshot *db.Snapshot, answer *NearestAnswer) error {

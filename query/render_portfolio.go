@@ -31,13 +31,24 @@ func (a *PortfolioAnswer) Write(w io.Writer, format Format, units Units) error {
 
 // Remarks returns the selection's remarks, how far interpolated ordinates are off, and the
 // caution.
-func (a *PortfolioAnswer) Remarks() string {
-	if a.Error == nil {
-		return remarks(&a.Selection)
+func (a *PortfolioAnswer) Remarks() string { return a.Error.remark() + remarks(&a.Selection) }
+
+// remark is a line, or none where ordinates are exact.
+func (e *GridError) remark() string {
+	if e == nil {
+		return ""
 	}
 	return fmt.Sprintf("note: ordinates interpolated in the grid: of %s and %s, exact ones differ by %s in the median, %s at 95%% of them, %s at most\n",
-		countOf(a.Error.Oscillators, "oscillator", "oscillators"), countOf(a.Error.Motions, "motion", "motions"),
-		percentTitle(a.Error.Median), percentTitle(a.Error.P95), percentTitle(a.Error.Max)) + remarks(&a.Selection)
+		countOf(e.Oscillators, "oscillator", "oscillators"), countOf(e.Motions, "motion", "motions"),
+		percentTitle(e.Median), percentTitle(e.P95), percentTitle(e.Max))
+}
+
+// object is nil where ordinates are exact.
+func (e *GridError) object() any {
+	if e == nil {
+		return nil
+	}
+	return object{{"oscillators", e.Oscillators}, {"motions", e.Motions}, {"median", e.Median}, {"p95", e.P95}, {"max", e.Max}}
 }
 
 // shown are the positions of the percentiles that a table has room for: the median, where
@@ -291,10 +302,7 @@ func (a *PortfolioAnswer) csvLimits(l *csvLine, row *PortfolioRow) {
 }
 
 func (a *PortfolioAnswer) object() object {
-	o := object{{"selection", a.Selection.object()}, {"ordinates", string(a.Ordinates)}, {"interpolation_error", nil}}
-	if e := a.Error; e != nil {
-		o[2].value = object{{"oscillators", e.Oscillators}, {"motions", e.Motions}, {"median", e.Median}, {"p95", e.P95}, {"max", e.Max}}
-	}
+	o := object{{"selection", a.Selection.object()}, {"ordinates", string(a.Ordinates)}, {"interpolation_error", a.Error.object()}}
 	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
 	rows := make([]object, len(a.Rows))
 	for i := range a.Rows {

@@ -28,6 +28,7 @@ func queryPortfolio(c *cli.Context) error {
 
 type portfolioOptions struct {
 	question query.PortfolioQuestion
+	nearest  int // stations, 0 for statistics of all
 	format   query.Format
 	units    query.Units
 }
@@ -37,6 +38,9 @@ func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
 		if c.IsSet(flag) {
 			return o, usagef("--structures and --%s exclude each other: the file says it of every structure", flag)
 		}
+	}
+	if o.nearest = c.Int("nearest"); c.IsSet("nearest") && o.nearest < 1 {
+		return o, usagef("--nearest %d: want at least 1", o.nearest)
 	}
 	q := &o.question
 	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
@@ -50,8 +54,14 @@ func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }))
 }
 
+// demands is an answer for many structures.
+type demands interface {
+	Write(w io.Writer, format query.Format, units query.Units) error
+	Remarks() string
+}
+
 func runPortfolio(ctx context.Context, store *db.Store, o portfolioOptions, w, stderr io.Writer) error {
-	answer, err := o.question.Ask(ctx, store)
+	answer, err := o.ask(ctx, store)
 	if err != nil {
 		return err
 	}
@@ -59,4 +69,11 @@ func runPortfolio(ctx context.Context, store *db.Store, o portfolioOptions, w, s
 		fmt.Fprint(stderr, answer.Remarks())
 	}
 	return answer.Write(w, o.format, o.units)
+}
+
+func (o *portfolioOptions) ask(ctx context.Context, store *db.Store) (demands, error) {
+	if o.nearest == 0 {
+		return o.question.Ask(ctx, store)
+	}
+	return query.NearestQuestion{PortfolioQuestion: o.question, Stations: o.nearest}.Ask(ctx, store)
 }

@@ -190,6 +190,7 @@ func queryDemandCommand() *cli.Command {
 			&cli.IntFlag{Name: "resamples", Value: query.DefaultResamples, Usage: "of the bootstrap"},
 			&cli.Uint64Flag{Name: "seed", Value: 1, Usage: "of the bootstrap's random numbers"},
 			&cli.StringFlag{Name: "structures", Usage: "instead of one structure those of a CSV or TOML `FILE`, a row each"},
+			&cli.IntFlag{Name: "nearest", DefaultText: "none", Usage: "with --structures and --event: estimates from the `N` nearest stations, the worst structure first"},
 			&cli.StringFlag{Name: "ordinates", Value: "exact", Usage: "with --structures: exact, or grid, interpolated between stored ones"},
 			formatFlag("table, csv or json"),
 		),
@@ -197,8 +198,10 @@ func queryDemandCommand() *cli.Command {
 			if c.IsSet("structures") {
 				return queryPortfolio(c)
 			}
-			if c.IsSet("ordinates") {
-				return usagef("--ordinates goes with --structures")
+			for _, flag := range []string{"ordinates", "nearest"} {
+				if c.IsSet(flag) {
+					return usagef("--%s goes with --structures", flag)
+				}
 			}
 			o, err := newDemandOptions(c)
 			if err != nil {

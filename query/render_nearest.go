@@ -1,0 +1,147 @@
+package query
+
+import (
+	"fmt"
+	"io"
+	"math"
+	"strings"
+)
+
+// Write renders the answer as a table, or as CSV or JSON, which are in SI whatever the
+// units. The error is a UsageError for another format and otherwise one of w.
+func (a *NearestAnswer) Write(w io.Writer, format Format, units Units) error {
+	var text []byte
+	var err error
+	switch format {
+	case FormatTable, "":
+		text = a.table(units)
+	case FormatCSV:
+		text = a.csv()
+	case FormatJSON:
+		text, err = jsonText(a.object())
+	default:
+		_, err = ParseFormat(string(format))
+	}
+	if err != nil {
+		return err
+	}
+	return writeText(w, "demands", text)
+}
+
+// Remarks says how estimates are made, and what PortfolioAnswer.Remarks does.
+func (a *NearestAnswer) Remarks() string {
+	return "note: estimates are means of logarithms over the nearest stations, weighted by 1/distance², from 1 km on; site, path and depth do not enter\n" +
+		a.Error.remark() + remarks(&a.Selection)
+}
+
+func (a *NearestAnswer) table(units Units) []byte {
+	t := table{columns: []column{{name: "structure", isWord: true}, {name: "period", unit: "s"}, {name: "damping"}}}
+	for _, c := range columnsOfPortfolio {
+		name, _ := quantityUnits[c.name].in(units)
+		t.columns = append(t.columns, column{name: c.title, unit: name})
+	}
+	t.columns = append(t.columns, column{name: "ratio"}, column{name: "limit", isWord: true}, column{name: "nearest", unit: "km"}, column{name: "stations", isWord: true})
+	for i := range a.Rows {
+		t.add(a.Rows[i].cells(units)...)
+	}
+	text := fmt.Appendf(nil, "Demand on %s from the nearest stations, %s ordinates\n%s\n%s\n", countOf(len(a.Rows), "structure", "structures"), a.Ordinates,
+		a.Selection.heading(), a.Selection.methodLine())
+	return append(append(t.appendTo(text), '\n'), a.Remarks()...)
+}
+
+func (r *NearestRow) cells(units Units) []string {
+	s := r.Structure
+	cells := []string{s.ID, figure(s.PeriodS), percentText(s.Damping)}
+	for _, c := range columnsOfPortfolio {
+		_, per := quantityUnits[c.name].in(units)
+		cells = append(cells, figure(r.estimate(c.name)/per))
+	}
+	limit, km := r.Limit, math.NaN()
+	if limit == "" {
+		limit = "-"
+	}
+	if len(r.Stations) > 0 {
+		km = r.Stations[0].DistanceKM
+	}
+	return append(cells, figure(r.Ratio), limit, figure(km), r.stationWords())
+}
+
+// stationWords name the stations and their distances.
+func (r *NearestRow) stationWords() string {
+	parts := make([]string, len(r.Stations))
+	for i, s := range r.Stations {
+		parts[i] = fmt.Sprintf("%s %s km", s.Station, figure(s.DistanceKM))
+	}
+	return strings.Join(parts, ", ")
+}
+
+// estimate is that of a quantity, NaN where there is none.
+func (r *NearestRow) estimate(name string) float64 {
+	for _, e := range r.Estimates {
+		if e.Name == name {
+			return e.Value
+		}
+	}
+	return math.NaN()
+}
+
+// csv has a row a structure; stations stand in one cell.
+func (a *NearestAnswer) csv() []byte {
+	var l csvLine
+	l.words("id", "name", "period_s", "damping", "latitude", "longitude")
+	l.words(portfolioQuantities...)
+	l.words("ratio", "governing_limit", "nearest_km", "farthest_km", "stations")
+	l.end()
+	for i := range a.Rows {
+		r := &a.Rows[i]
+		s := r.Structure
+		l.words(s.ID, s.Name)
+		for _, x := range []float64{s.PeriodS, s.Damping, orNaN(s.LatitudeDeg), orNaN(s.LongitudeDeg)} {
+			l.number(x)
+		}
+		for _, name := range portfolioQuantities {
+			l.number(r.estimate(name))
+		}
+		l.number(r.Ratio)
+		l.word(r.Limit)
+		near, far := math.NaN(), math.NaN()
+		if n := len(r.Stations); n > 0 {
+			near, far = r.Stations[0].DistanceKM, r.Stations[n-1].DistanceKM
+		}
+		l.number(near)
+		l.number(far)
+		l.word(r.stationWords())
+		l.end()
+	}
+	return l.text
+}
+
+func (a *NearestAnswer) object() object {
+	rows := make([]object, len(a.Rows))
+	for i := range a.Rows {
+		rows[i] = a.Rows[i].object()
+	}
+	return object{
+		{"selection", a.Selection.object()}, {"ordinates", string(a.Ordinates)}, {"interpolation_error", a.Error.object()},
+		{"structures", rows}, {"caution", Caution},
+	}
+}
+
+func (r *NearestRow) object() object {
+	s := r.Structure
+	estimates, stations := object{}, make([]object, len(r.Stations))
+	for _, e := range r.Estimates {
+		estimates = append(estimates, field{e.Name, e.Value})
+	}
+	for i, at := range r.Stations {
+		stations[i] = object{{"record", at.Record}, {"station", at.Station}, {"distance_km", at.DistanceKM}, {"weight", at.Weight}, {"sd_m", at.SDM}}
+	}
+	o := object{
+		{"id", s.ID}, {"name", s.Name}, {"period_s", s.PeriodS}, {"damping", s.Damping}, {"latitude", orNaN(s.LatitudeDeg)}, {"longitude", orNaN(s.LongitudeDeg)},
+		{"estimates", estimates}, {"ratio", r.Ratio}, {"governing_limit", nil}, {"stations", stations},
+	}
+	if r.Limit != "" {
+		o[8].value = r.Limit
+	}
+	return o
+}
