@@ -55,8 +55,8 @@ func roundingPower(resolution float64) float64 {
 //
 // Noise of half a step before the motion keeps the level (dither), and there is none.
 func stallPower(resolution, frequencyHz, lengthS float64) float64 {
-	amplitude := resolution / 2 * min(lengthS, 1/(math.Pi*frequencyHz))
-	return float64(2*amplitude*amplitude) / lengthS
+	amplitude := float64(resolution / 2 * min(lengthS, 1/(math.Pi*frequencyHz)))
+	return 2 * amplitude * amplitude / lengthS
 }
 
 // endOf is the recorded sample at which a motion is lost in the noise, or in rounding; the
