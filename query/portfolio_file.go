@@ -79,6 +79,11 @@ func readDrafts(path string) ([]draft, error) {
 	case len(text) > maxPortfolio:
 		return nil, fmt.Errorf("is larger than %d bytes", maxPortfolio)
 	}
+	return parseDrafts(text)
+}
+
+// parseDrafts reads what a file of structures holds.
+func parseDrafts(text []byte) ([]draft, error) {
 	text = bytes.TrimPrefix(text, []byte("\xef\xbb\xbf"))
 	if isTOML(text) {
 		return tomlDrafts(text)
