@@ -135,7 +135,7 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
-	picked.report.Notes = append(picked.report.Notes, q.Extras.notes(&picked.report, q.Structure.Damping)...)
+	picked.report.Notes = append(picked.report.Notes, append(q.Extras.notes(&picked.report), q.Extras.dampingNote(q.Structure.Damping)...)...)
 	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By, Extras: q.Extras}
 	whole := picked.sample()
 	answer.Quantities, answer.Band = q.reduceBoth(whole, loaded, at)

@@ -226,14 +226,29 @@ func lognormalStatistics(percents []float64) []statistic {
 		statistic{title: "p-value", csv: "anderson_darling_p", path: []string{"lognormal", "p_value"}, of: of(func(l *lognormal) float64 { return l.p })})
 }
 
+// dampingNote says that a design spectrum is for another damping than this.
+func (e Extras) dampingNote(damping float64) []string {
+	if e.Design == nil {
+		return nil
+	}
+	ratio, fixed := e.Design.Damping()
+	if !fixed || ratio == damping {
+		return nil
+	}
+	return []string{"the design spectrum is that of " + percentText(ratio) + " damping, set beside motions at " + percentText(damping)}
+}
+
 // isAny reports whether anything is asked for.
 func (e Extras) isAny() bool {
 	return e.Design != nil || e.Spread || e.Intervals || e.Lognormal || !e.Bootstrap.isNone()
 }
 
 // notes are sentences that belong to the figures.
-func (e Extras) notes(s *SelectionReport, damping float64) []string {
+func (e Extras) notes(s *SelectionReport) []string {
 	var out []string
+	if s.Component == ComponentEach && (e.Intervals || e.Lognormal || e.Spread || !e.Bootstrap.isNone()) {
+		out = append(out, "both horizontals of a record count, and are taken as independent, which they are not")
+	}
 	if e.Intervals {
 		if s.Balance.isNone() {
 			out = append(out, "intervals hold the percentile of what the motions are drawn from with "+percentText(e.Level)+" confidence, as if motions were independent; those of one event are not")
@@ -246,8 +261,8 @@ func (e Extras) notes(s *SelectionReport, damping float64) []string {
 	}
 	if e.Design != nil {
 		out = append(out, "design spectrum "+e.Design.Name()+": "+e.Design.Words())
-		if ratio, fixed := e.Design.Damping(); fixed && ratio != damping {
-			out = append(out, "the design spectrum is that of "+percentText(ratio)+" damping, set beside motions at "+percentText(damping))
+		if e.Design.IsVertical() != (s.Component == ComponentV) && e.Design.HasDirection() {
+			out = append(out, "the design spectrum is of the other direction: vertical beside horizontal")
 		}
 		out = append(out, e.Design.Notes()...)
 	}

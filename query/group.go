@@ -96,6 +96,7 @@ func (g *Grouping) details() db.Details {
 // Group is one part of a selection.
 type Group struct {
 	Label                    string
+	From, To                 *float64 // the edges of a bin, nil for none
 	Records, Spectra, Events int
 	motions                  []int // positions, ascending
 }
@@ -161,9 +162,15 @@ func (g *Grouping) bins() []Group {
 	if g.Edges == nil {
 		return nil
 	}
-	groups := []Group{{Label: g.binLabel(0)}}
-	for i := range g.Edges {
-		groups = append(groups, Group{Label: g.binLabel(i + 1)})
+	groups := make([]Group, len(g.Edges)+1)
+	for i := range groups {
+		groups[i].Label = g.binLabel(i)
+		if i > 0 {
+			groups[i].From = &g.Edges[i-1]
+		}
+		if i < len(g.Edges) {
+			groups[i].To = &g.Edges[i]
+		}
 	}
 	return groups
 }
@@ -185,7 +192,7 @@ func (g *Grouping) labelOf(m *motion) string {
 	if of := g.text(); of != nil {
 		label := of(&a)
 		if g.Attribute == "station" && a.Network != "" && label != "" {
-			label = a.Network + "." + label // codes repeat between networks
+			label = stationCode(&db.Station{Network: a.Network, Code: label})
 		}
 		return cmp.Or(label, unknownGroup)
 	}

@@ -4,6 +4,7 @@ import (
 	"cmp"
 	"context"
 	"errors"
+	"fmt"
 	"math"
 	"slices"
 
@@ -45,11 +46,14 @@ type Estimate struct {
 
 // StationAt is a recording that an estimate rests on.
 type StationAt struct {
-	Record, Station string
+	Record, Station string  // the station with its network, NET.STA
 	DistanceKM      float64 // from the structure, along the ellipsoid
 	Weight          float64 // share of the estimate
 	SDM             float64 // SD in m of the structure there
 }
+
+// farKM is how far the nearest station is at most, without a note: our limit.
+const farKM = 100
 
 // leastDistanceKM bounds weights: nearer stations differ by more than distance tells.
 const leastDistanceKM = 1
@@ -59,7 +63,8 @@ const leastDistanceKM = 1
 //	ln y = Σ w·ln y[i] / Σ w,  w = 1/d²,
 //
 // of the nearest stations at distances d, at least 1 km: inverse distance weighting of
-// logarithms. Motions of stations without position do not count.
+// logarithms. Of a station with several motions, such as ground and roof, the first by record
+// counts; motions of stations without position do not.
 //
 // Source: D. Shepard, "A two-dimensional interpolation function for irregularly-spaced
 // data", Proc. 23rd ACM National Conference, 1968, 517–524, with the power 2.
@@ -114,6 +119,16 @@ func (q *NearestQuestion) answer(ctx context.Context, snapshot *db.Snapshot, ans
 	if answer.Error, err = w.end(ctx); err != nil {
 		return err
 	}
+	far := 0
+	for i := range answer.Rows {
+		if s := answer.Rows[i].Stations; len(s) == 0 || s[0].DistanceKM > farKM {
+			far++
+		}
+	}
+	w.picked.report.Notes = append(w.picked.report.Notes, nearestMethod)
+	if far > 0 {
+		w.picked.report.Notes = append(w.picked.report.Notes, fmt.Sprintf("%s farther than %d km from any station: look at their coordinates", countOf(far, "structure is", "structures are"), farKM))
+	}
 	if unplaced > 0 {
 		w.picked.report.Notes = append(w.picked.report.Notes, countOf(unplaced, "motion", "motions")+" of stations of unknown position not taken")
 	}
@@ -123,6 +138,8 @@ func (q *NearestQuestion) answer(ctx context.Context, snapshot *db.Snapshot, ans
 	answer.Selection = w.picked.report
 	return nil
 }
+
+const nearestMethod = "estimates are means of logarithms over the nearest stations, weighted by 1/distance², from 1 km on; site, path and depth do not enter"
 
 // sortRatio orders rows without ratio behind all others.
 func (r *NearestRow) sortRatio() float64 {
@@ -135,6 +152,7 @@ func (r *NearestRow) sortRatio() float64 {
 // site is where a motion was recorded.
 type site struct {
 	motion                    int // position
+	station                   string
 	latitudeDeg, longitudeDeg float64
 	x, y, z                   float64 // on the unit sphere
 }
@@ -146,11 +164,19 @@ func sitesOf(motions []motion) (sites []site, unplaced int) {
 			unplaced++
 			continue
 		}
-		at := site{motion: i, latitudeDeg: *s.LatitudeDeg, longitudeDeg: *s.LongitudeDeg}
+		at := site{motion: i, station: stationCode(s), latitudeDeg: *s.LatitudeDeg, longitudeDeg: *s.LongitudeDeg}
 		at.x, at.y, at.z = onSphere(at.latitudeDeg, at.longitudeDeg)
 		sites = append(sites, at)
 	}
 	return sites, unplaced
+}
+
+// stationCode is the station with its network: codes repeat between networks.
+func stationCode(s *db.Station) string {
+	if s.Network == "" {
+		return s.Code
+	}
+	return s.Network + "." + s.Code
 }
 
 func onSphere(latitudeDeg, longitudeDeg float64) (x, y, z float64) {
@@ -166,16 +192,18 @@ type candidate struct {
 	km    float64
 }
 
-// nearest returns at most n of the sites that usable accepts, the nearest first, equal
+// nearest returns at most n of the sites that usable accepts, one a station, the nearest first, equal
 // distances in the order of records. Chords on a sphere, which differ from lines on the
 // ellipsoid by less than 1 %, leave few whose distance has to be found.
 func nearest(latitudeDeg, longitudeDeg float64, sites []site, n int, usable func(motion int) bool) []candidate {
 	const margin = 1.02
 	x, y, z := onSphere(latitudeDeg, longitudeDeg)
 	var list []candidate
+	taken := map[string]bool{}
 	for i := range sites {
 		s := &sites[i]
-		if usable(s.motion) {
+		if !taken[s.station] && usable(s.motion) {
+			taken[s.station] = true
 			list = append(list, candidate{site: s, chord: math.Hypot(math.Hypot(s.x-x, s.y-y), s.z-z)})
 		}
 	}
@@ -218,7 +246,7 @@ func (p *plan) estimate(o *ordinates, sites []site, n int, motions []motion) Nea
 	for i, c := range taken {
 		m := &motions[at[i]]
 		row.Stations = append(row.Stations, StationAt{
-			Record: m.record(), Station: m.members[0].Record.Station.Code, DistanceKM: c.km, Weight: weights[i] / total, SDM: o.at(p.at[0])[at[i]],
+			Record: m.record(), Station: c.site.station, DistanceKM: c.km, Weight: weights[i] / total, SDM: o.at(p.at[0])[at[i]],
 		})
 	}
 	p.compared(o, at, nil, func(name string, values []float64, _ float64) {

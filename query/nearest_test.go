@@ -6,6 +6,7 @@ import (
 	"errors"
 	"math"
 	"math/rand/v2"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -24,6 +25,7 @@ func meridianRecords() []inventedRecord {
 		{code: "N2", siting: "free-field", event: quakeA, station: at("Q", 40.2), components: pair(0.01, 0.01)},
 		{code: "N3", siting: "free-field", event: quakeA, station: at("R", 41), components: pair(0.64, 0.64)},
 		{code: "N4", siting: "free-field", event: quakeB, station: at("S", 40), components: pair(9, 9)},
+		{code: "N6", siting: "free-field", event: quakeA, station: at("P", 40.1), components: pair(5, 5)}, // a second instrument
 		{code: "N5", siting: "free-field", event: quakeA, station: &db.Station{Network: "ZX", Code: "T"}, components: pair(9, 9)},
 	}
 }
@@ -60,7 +62,7 @@ func TestNearestByHand(t *testing.T) {
 		t.Errorf("stations %+v", s)
 	}
 	beside := a.Rows[0].Stations
-	if len(beside) != 2 || beside[0].DistanceKM != 0 || beside[1].Station != "Q" || !(beside[0].Weight > 0.9998) {
+	if len(beside) != 2 || beside[0].DistanceKM != 0 || beside[1].Station != "ZX.Q" || !(beside[0].Weight > 0.9998) {
 		t.Errorf("beside a station: %+v", beside)
 	}
 	if text := a.Remarks(); !strings.Contains(text, "1 motion of stations of unknown position") || !strings.Contains(text, "1 structure without latitude and longitude") {
@@ -75,7 +77,7 @@ func TestNearestOfMany(t *testing.T) {
 	rng := rand.New(rand.NewPCG(5, 6))
 	sites := make([]site, 400)
 	for i := range sites {
-		s := site{motion: i, latitudeDeg: 60 + 4*rng.Float64(), longitudeDeg: 178 + 5*rng.Float64()} // over the date line
+		s := site{motion: i, station: strconv.Itoa(i), latitudeDeg: 60 + 4*rng.Float64(), longitudeDeg: 178 + 5*rng.Float64()} // over the date line
 		s.x, s.y, s.z = onSphere(s.latitudeDeg, s.longitudeDeg)
 		sites[i] = s
 	}
@@ -125,7 +127,7 @@ func TestNearestMistakes(t *testing.T) {
 func TestNearestIsWritten(t *testing.T) {
 	a := askNearest(t, NearestQuestion{Stations: 1})
 	rows, err := csv.NewReader(strings.NewReader(written(t, a, FormatCSV, UnitsSI))).ReadAll()
-	if err != nil || len(rows) != 4 || rows[1][0] != "beside" || rows[1][len(rows[1])-1] != "R 0 km" {
+	if err != nil || len(rows) != 4 || rows[1][0] != "beside" || strings.Join(rows[1][len(rows[1])-4:], ";") != "ZX.R;0;1;N3" {
 		t.Errorf("CSV %v, %v", rows, err)
 	}
 	var got struct {
@@ -145,7 +147,7 @@ func TestNearestIsWritten(t *testing.T) {
 	if s := got.Structures; len(s) != 3 || *s[0].Ratio != 0.64 || *s[0].Estimates["sd_m"] != 0.64 || *s[0].Stations[0].DistanceKM != 0 || s[0].Stations[0].Weight != 1 || s[2].Ratio != nil {
 		t.Errorf("JSON %+v", got)
 	}
-	if table := written(t, a, FormatTable, UnitsSI); !strings.Contains(table, "Demand on 3 structures from the nearest stations") || !strings.Contains(table, "R 0 km") {
+	if table := written(t, a, FormatTable, UnitsSI); !strings.Contains(table, "Demand on 3 structures from the nearest stations") || !strings.Contains(table, "ZX.R 0 km") {
 		t.Errorf("table\n%s", table)
 	}
 }

@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"math"
 	"slices"
-	"strconv"
 	"strings"
 )
 
@@ -135,8 +134,8 @@ func entriesByKind(entries []entry, known []entryKind) (map[string]entry, error)
 			return nil, &fileError{e.line, e.name, fmt.Errorf("%s is given twice", kind)}
 		}
 		if unit != "" {
-			if _, err := strconv.ParseFloat(e.text, 64); err != nil {
-				return nil, &fileError{e.line, e.name, fmt.Errorf("%q is not a plain number", e.text)}
+			if numberLength(e.text) != len(e.text) {
+				return nil, &fileError{e.line, e.name, fmt.Errorf("%q is not a plain number such as 1.35 (decimal point, no thousands separators)", e.text)}
 			}
 			e.text += unit
 		}
@@ -155,14 +154,17 @@ func (d *draft) structure() (s PortfolioStructure, err error) {
 	if s.ID == "" {
 		return s, &fileError{d.line, "id", errors.New("is missing")}
 	}
-	if len(d.modes) > 0 {
+	switch _, isDamped := found["damping"]; {
+	case len(d.modes) > 0:
 		err = d.readModes(&s, found)
-	} else {
+	case !isDamped:
+		err = &fileError{d.line, "damping", errors.New("is missing")}
+	default:
 		s.Structure, err = ParseStructure(StructureText{
 			Period: found["period"].text, Stiffness: found["stiffness"].text, Mass: found["mass"].text, Weight: found["weight"].text,
 			Damping: found["damping"].text, Height: found["height"].text,
 		})
-		err = at(d.line, err)
+		err = in(found, d.line, err)
 	}
 	if err != nil {
 		return s, err
@@ -170,10 +172,21 @@ func (d *draft) structure() (s PortfolioStructure, err error) {
 	return s, s.readRest(found)
 }
 
-// at makes a *fileError of a line from a UsageError.
-func at(line int, err error) error {
+// in makes a *fileError from a UsageError about one of the entries found, or else of a line.
+func in(found map[string]entry, line int, err error) error {
 	if wrong, ok := errors.AsType[*UsageError](err); ok {
+		if e, isThere := found[wrong.What]; isThere {
+			return e.wrong(err)
+		}
 		return &fileError{line, wrong.What, errors.New(wrong.Why)}
+	}
+	return err
+}
+
+// wrong makes a *fileError of the entry from a UsageError, and nil from nil.
+func (e entry) wrong(err error) error {
+	if wrong, ok := errors.AsType[*UsageError](err); ok {
+		return &fileError{e.line, e.name, errors.New(wrong.Why)}
 	}
 	return err
 }
@@ -187,7 +200,7 @@ func (s *PortfolioStructure) readRest(found map[string]entry) error {
 		}
 		x, err := parse(e.text)
 		*into = &x
-		return at(e.line, err)
+		return e.wrong(err)
 	}
 	var width *float64
 	err := errors.Join(
@@ -233,19 +246,19 @@ func (s *PortfolioStructure) check(found map[string]entry) error {
 
 // readModes reads the modes of a structure that has such.
 func (d *draft) readModes(s *PortfolioStructure, found map[string]entry) error {
-	for _, kind := range []string{"period", "stiffness", "damping"} {
+	for _, kind := range []string{"period", "stiffness", "damping", "period_uncertainty"} {
 		if e, ok := found[kind]; ok {
-			return &fileError{e.line, kind, errors.New("is that of each mode where there are modes")}
+			return &fileError{e.line, e.name, errors.New("is not taken where there are modes, which have periods and dampings of their own")}
 		}
 	}
 	var err error
 	if s.MassKG, err = parseMassOrWeight(found["mass"].text, found["weight"].text); err != nil {
-		return at(d.line, err)
+		return in(found, d.line, err)
 	}
 	if e, ok := found["height"]; ok {
 		h, err := ParseLength(e.text)
 		if err != nil {
-			return at(e.line, err)
+			return e.wrong(err)
 		}
 		s.HeightM = &h
 	}
@@ -277,13 +290,13 @@ func (m *modeDraft) mode(line int) (out Mode, err error) {
 		}
 	}
 	if out.PeriodS, err = ParsePeriod(found["period"].text); err != nil {
-		return out, at(found["period"].line, err)
+		return out, found["period"].wrong(err)
 	}
 	if out.Damping, err = ParseDamping(found["damping"].text); err != nil {
-		return out, at(found["damping"].line, err)
+		return out, found["damping"].wrong(err)
 	}
 	if out.MassRatio, err = parseRatio("mass_ratio", found["mass_ratio"].text); err != nil {
-		return out, at(found["mass_ratio"].line, err)
+		return out, found["mass_ratio"].wrong(err)
 	}
 	if !(out.MassRatio > 0 && out.MassRatio <= 1) {
 		return out, &fileError{found["mass_ratio"].line, what, fmt.Errorf("the mass ratio %v is not above 0 and at most 1", out.MassRatio)}
@@ -291,7 +304,7 @@ func (m *modeDraft) mode(line int) (out Mode, err error) {
 	if e, ok := found["height"]; ok {
 		h, err := ParseLength(e.text)
 		if err != nil {
-			return out, at(e.line, err)
+			return out, e.wrong(err)
 		}
 		out.HeightM = &h
 	}

@@ -9,6 +9,7 @@ import (
 	"os"
 	"strconv"
 	"strings"
+	"unicode/utf8"
 
 	"github.com/pelletier/go-toml/v2"
 	"github.com/pelletier/go-toml/v2/unstable"
@@ -84,7 +85,16 @@ func readDrafts(path string) ([]draft, error) {
 
 // parseDrafts reads what a file of structures holds.
 func parseDrafts(text []byte) ([]draft, error) {
+	if bytes.HasPrefix(text, []byte("\xff\xfe")) || bytes.HasPrefix(text, []byte("\xfe\xff")) {
+		return nil, errors.New("is UTF-16; save it as UTF-8")
+	}
 	text = bytes.TrimPrefix(text, []byte("\xef\xbb\xbf"))
+	number := 0
+	for line := range bytes.Lines(text) {
+		if number++; !utf8.Valid(line) {
+			return nil, &fileError{number, "", errors.New("is not UTF-8; save the file as UTF-8")}
+		}
+	}
 	if isTOML(text) {
 		return tomlDrafts(text)
 	}
@@ -97,7 +107,7 @@ func isTOML(text []byte) bool {
 	for line := range bytes.Lines(text) {
 		line = bytes.TrimSpace(line)
 		if len(line) > 0 && line[0] != '#' {
-			return line[0] == '['
+			return line[0] == '[' || bytes.HasPrefix(line, []byte("structure"))
 		}
 	}
 	return false
@@ -119,6 +129,9 @@ func csvDrafts(text []byte) ([]draft, error) {
 	columns := make([]columnName, len(names))
 	for i, name := range names {
 		line, _ := r.FieldPos(i)
+		if strings.TrimSpace(name) == "" {
+			continue // of spreadsheets, over empty cells
+		}
 		if columns[i], err = parseColumnName(name); err != nil {
 			return nil, &fileError{line, "", err}
 		}
@@ -137,6 +150,9 @@ func csvDrafts(text []byte) ([]draft, error) {
 		for i, cell := range row {
 			if cell = strings.TrimSpace(cell); cell == "" {
 				continue
+			}
+			if columns[i].name == "" {
+				return nil, &fileError{line, "", fmt.Errorf("%q stands in a column without a name", cell)}
 			}
 			into := &d.entries
 			if columns[i].mode > 0 {
@@ -250,8 +266,11 @@ func (t *tomlReader) take(e *unstable.Node, line int) error {
 		return &fileError{line, "", err}
 	}
 	switch v := e.Value(); v.Kind {
-	case unstable.String, unstable.Integer, unstable.Float:
+	case unstable.String:
 		*t.into = append(*t.into, entry{name, string(v.Data), line})
+		return nil
+	case unstable.Integer, unstable.Float:
+		*t.into = append(*t.into, entry{name, strings.ReplaceAll(string(v.Data), "_", ""), line})
 		return nil
 	}
 	return &fileError{line, name, errors.New("want a text or a number")}

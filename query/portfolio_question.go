@@ -70,6 +70,8 @@ type LimitRatio struct {
 	Percentiles []float64 // of the demand, over the limit
 	Max         float64
 	Above       float64 // share of the motions' weight that exceeds the limit
+	Count       int     // of motions
+	Governing   string  // the record that gives Max
 }
 
 // Ask answers the question from one snapshot of the store. The error is a UsageError for a
@@ -125,8 +127,9 @@ func (q PortfolioQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*
 	if answer.Error, err = w.end(ctx); err != nil {
 		return nil, err
 	}
-	w.picked.report.Notes = append(w.picked.report.Notes, q.notes()...)
 	answer.Selection = w.picked.report
+	answer.Selection.Notes = append(answer.Selection.Notes, q.notes(&answer.Selection)...)
+	answer.noteCounts()
 	return answer, nil
 }
 
@@ -159,12 +162,44 @@ func (w *portfolioWork) end(ctx context.Context) (*GridError, error) {
 	return e, nil
 }
 
-func (q *PortfolioQuestion) notes() []string {
-	out := q.Extras.notes(&SelectionReport{Balance: q.Balance}, math.NaN())
+func (q *PortfolioQuestion) notes(s *SelectionReport) []string {
+	out := q.Extras.notes(s)
+	if d := q.Design; d != nil {
+		others := 0
+		ratio, fixed := d.Damping()
+		for i := range q.Structures {
+			if fixed && q.Structures[i].Damping != ratio {
+				others++
+			}
+		}
+		if others > 0 {
+			out = append(out, "the design spectrum is that of "+percentText(ratio)+" damping, set beside "+countOf(others, "structure", "structures")+" of another")
+		}
+	}
 	if slices.ContainsFunc(q.Structures, func(s PortfolioStructure) bool { return len(s.Modes) > 0 }) {
 		out = append(out, "of structures of several modes base shear and moment are combined record by record by CQC; the combination of peaks is an estimate")
 	}
 	return out
+}
+
+// noteCounts says how many structures have fewer motions than the selection, or none: the
+// usable bands of the others do not reach their periods.
+func (a *PortfolioAnswer) noteCounts() {
+	fewer, none := 0, 0
+	for i := range a.Rows {
+		switch n := a.Rows[i].quantity("sd_m", true).Count; {
+		case n == 0:
+			none++
+		case n < a.Selection.Spectra:
+			fewer++
+		}
+	}
+	if fewer > 0 {
+		a.Selection.Notes = append(a.Selection.Notes, "for "+countOf(fewer, "structure", "structures")+" some motions cannot be believed at the periods: see count")
+	}
+	if none > 0 {
+		a.Selection.Notes = append(a.Selection.Notes, "for "+countOf(none, "structure", "structures")+" no motion can be believed at all periods")
+	}
 }
 
 // plan is where the ordinates of one structure are among those of its part.
@@ -350,7 +385,7 @@ func (s *PortfolioStructure) limitsOf(quantity string) (out []limit) {
 
 // compare sets a quantity that the reducer has just reduced beside a capacity.
 func (r *reducer) compare(l limit, x *Reduction) LimitRatio {
-	out := LimitRatio{Name: l.name, Limit: l.given, Max: x.Max / l.inUnit, Above: r.above(l.inUnit)}
+	out := LimitRatio{Name: l.name, Limit: l.given, Max: x.Max / l.inUnit, Above: r.above(l.inUnit), Count: x.Count, Governing: x.Governing}
 	for _, p := range x.Percentiles {
 		out.Percentiles = append(out.Percentiles, p/l.inUnit)
 	}

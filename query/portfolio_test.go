@@ -88,18 +88,29 @@ func TestPortfolioMistakes(t *testing.T) {
 		{"", "p: holds nothing"},
 		{"id,period\n", "p: holds no structure"},
 		{"id,colour\na,red\n", `p:1: unknown name "colour"; known: id, name, period`},
-		{"id,period\na,1.2\n", `p:2: period: "1.2" has no unit`},
+		{"id,period,damping\na,1.2,5%\n", `p:2: period: "1.2" has no unit`},
 		{"id,period_s,damping\na,1.2,5%\na,1,5%\n", `p:3: id: "a" stands in line 2 too`},
 		{"id,period_s,damping\n,1.2,5%\n", "p:2: id: is missing"},
 		{"id,period_s,period,damping\na,1,2s,5%\n", "p:2: period: period is given twice"},
-		{"id,period_s,damping\na,x,5%\nb,-1,5%\nc,1,200%\n", "p:2: period_s: \"x\" is not a plain number\np:3: period:"},
+		{"id,period_s,damping\na,x,5%\nb,-1,5%\nc,1,200%\n", "p:3: period_s: \"-1s\" is not a positive number in range\np:4: damping: 2 is 200%"},
 		{"id,period_s,damping,max_base_shear_kn\na,1,5%,3\n", "p:2: max_base_shear: needs a mass or a weight"},
 		{"id,period_s,damping,max_drift_ratio\na,1,5%,1%\n", "p:2: max_drift_ratio: needs the height"},
 		{"id,period_s,damping,latitude\na,1,5%,10\n", "p:2: latitude: latitude and longitude belong together"},
 		{"id,period_s,damping,latitude,longitude\na,1,5%,100,1\n", "p:2: latitude: 100 is not within ±90 degrees"},
 		{"id,mode1_period_s,mode1_damping\na,1,5%\n", "p:2: mode 1: has no mass_ratio"},
-		{"id,period_s,mode1_period_s,mode1_damping,mode1_mass_ratio\na,1,1,5%,0.5\n", "p:2: period: is that of each mode"},
+		{"id,period_s,mode1_period_s,mode1_damping,mode1_mass_ratio\na,1,1,5%,0.5\n", "p:2: period_s: is not taken where there are modes"},
 		{"id,mode1_period_s,mode1_damping,mode1_mass_ratio,mode2_period_s,mode2_damping,mode2_mass_ratio\na,1,5%,0.6,2,5%,0.5\n", "which is over 1"},
+		{"id,period_uncertainty,mode1_period_s,mode1_damping,mode1_mass_ratio\na,10%,1,5%,0.6\n", "p:2: period_uncertainty: is not taken where there are modes"},
+		{"id,period_s,damping,weight_kn,max_base_shear_kn\na,1,5%,1,0\n", "p:2: max_base_shear_kn: \"0kN\" is not a positive number"},
+		{"id,period_s,damping,period_uncertainty\na,1,5%,10\n", "p:2: period_uncertainty: 10 is out of range"},
+		{"id;period_s;damping\na;0,5;5%\n", `p:2: period_s: "0,5" is not a plain number such as 1.35`},
+		{"id,period_s,damping\na,inf,5%\n", `p:2: period_s: "inf" is not a plain number`},
+		{"id,period_s\na,1\n", "p:2: damping: is missing"},
+		{"id,period_s,damping,,\na,1,5%,,3\n", "p:2: \"3\" stands in a column without a name"},
+		{"id,period_s,damping\nSch\xfc,1,5%\n", "p:2: is not UTF-8"},
+		{"\xff\xfei\x00d\x00", "p: is UTF-16; save it as UTF-8"},
+		{"[[structure]]\nid = \"a\"\nperiod_s = 1\ndamping = 0.05\nweight_kn = 1_000\nmax_base_shear_kn = \"x\"\n", "p:6: max_base_shear_kn: "},
+		{"structure = [{id = \"a\"}]\n", "p:1: structure: want [[structure]] tables"},
 		{"id,mode0_period_s\na,1\n", "modes 1 to 50"},
 		{"id,period_s,damping\na,1,5%,3\n", "p:2: wrong number of fields"},
 		{"[[structure]]\nid = \"a\"\nperiod = \"1s\"\ndamping = \"5%\"\ncolour = 1\n", `p:5: unknown name "colour"`},
@@ -187,17 +198,22 @@ func TestLimitsByHand(t *testing.T) {
 		"a,3.141592653589793,2%,1000,3,0.1,4%,200\n")
 	a := askPortfolio(t, store, PortfolioQuestion{Structures: structures, Percentiles: []float64{50, 80}})
 	want := []LimitRatio{
-		{"displacement", 0.1, []float64{0.8, 1.16}, 1.4, 2.0 / 7},
-		{"drift", 0.04, []float64{0.08 / 0.12, 0.116 / 0.12}, 0.14 / 0.12, 1.0 / 7},
-		{"base_shear", 200, []float64{1.6, 2.32}, 2.8, 5.0 / 7},
+		{"displacement", 0.1, []float64{0.8, 1.16}, 1.4, 2.0 / 7, 7, "D6"},
+		{"drift", 0.04, []float64{0.08 / 0.12, 0.116 / 0.12}, 0.14 / 0.12, 1.0 / 7, 7, "D6"},
+		{"base_shear", 200, []float64{1.6, 2.32}, 2.8, 5.0 / 7, 7, "D6"},
 	}
 	for i, got := range a.Rows[0].Limits {
 		w := want[i]
-		if got.Name != w.Name || !near(got.Limit, w.Limit) || !near(got.Percentiles[0], w.Percentiles[0]) || !near(got.Percentiles[1], w.Percentiles[1]) || !near(got.Max, w.Max) || !near(got.Above, w.Above) {
+		if got.Name != w.Name || !near(got.Limit, w.Limit) || !near(got.Percentiles[0], w.Percentiles[0]) || !near(got.Percentiles[1], w.Percentiles[1]) || !near(got.Max, w.Max) || !near(got.Above, w.Above) || got.Count != w.Count || got.Governing != w.Governing {
 			t.Errorf("%+v, want %+v", got, w)
 		}
 	}
-	if worst := a.Rows[0].worst(a.greatest()); worst.name != "base_shear" || !near(worst.ratio, 2.32) {
+	if worst := a.Rows[0].worst(a.Percentiles); worst.Name != "base_shear" || !near(worst.ratio, 2.32) || worst.percent != 80 {
+		t.Errorf("worst %+v", worst)
+	}
+	// A percentile that seven do not support gives way to the highest that they do.
+	a = askPortfolio(t, store, PortfolioQuestion{Structures: structures, Percentiles: []float64{50, 95}})
+	if worst := a.Rows[0].worst(a.Percentiles); worst.Name != "base_shear" || !near(worst.ratio, 1.6) || worst.percent != 50 {
 		t.Errorf("worst %+v", worst)
 	}
 }

@@ -28,11 +28,8 @@ func (a *NearestAnswer) Write(w io.Writer, format Format, units Units) error {
 	return writeText(w, "demands", text)
 }
 
-// Remarks says how estimates are made, and what PortfolioAnswer.Remarks does.
-func (a *NearestAnswer) Remarks() string {
-	return "note: estimates are means of logarithms over the nearest stations, weighted by 1/distance², from 1 km on; site, path and depth do not enter\n" +
-		a.Error.remark() + remarks(&a.Selection)
-}
+// Remarks returns what PortfolioAnswer.Remarks does.
+func (a *NearestAnswer) Remarks() string { return a.Error.remark() + remarks(&a.Selection) }
 
 func (a *NearestAnswer) table(units Units) []byte {
 	t := table{columns: []column{{name: "structure", isWord: true}, {name: "period", unit: "s"}, {name: "damping"}}}
@@ -85,12 +82,13 @@ func (r *NearestRow) estimate(name string) float64 {
 	return math.NaN()
 }
 
-// csv has a row a structure; stations stand in one cell.
+// csv has a row a structure; stations, distances, weights and records stand in cells of
+// their own, each a list split by blanks, the nearest first.
 func (a *NearestAnswer) csv() []byte {
 	var l csvLine
 	l.words("id", "name", "period_s", "damping", "latitude", "longitude")
 	l.words(portfolioQuantities...)
-	l.words("ratio", "governing_limit", "nearest_km", "farthest_km", "stations")
+	l.words("ratio", "governing_limit", "nearest_km", "farthest_km", "stations", "distances_km", "weights", "records")
 	l.end()
 	for i := range a.Rows {
 		r := &a.Rows[i]
@@ -110,7 +108,17 @@ func (a *NearestAnswer) csv() []byte {
 		}
 		l.number(near)
 		l.number(far)
-		l.word(r.stationWords())
+		list := func(of func(s *StationAt) string) {
+			parts := make([]string, len(r.Stations))
+			for k := range r.Stations {
+				parts[k] = of(&r.Stations[k])
+			}
+			l.word(strings.Join(parts, " "))
+		}
+		list(func(s *StationAt) string { return s.Station })
+		list(func(s *StationAt) string { return shortest(s.DistanceKM) })
+		list(func(s *StationAt) string { return shortest(s.Weight) })
+		list(func(s *StationAt) string { return s.Record })
 		l.end()
 	}
 	return l.text

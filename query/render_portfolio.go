@@ -33,6 +33,14 @@ func (a *PortfolioAnswer) Write(w io.Writer, format Format, units Units) error {
 // caution.
 func (a *PortfolioAnswer) Remarks() string { return a.Error.remark() + remarks(&a.Selection) }
 
+// tableRemarks say what a table has no room for.
+func (a *PortfolioAnswer) tableRemarks() string {
+	if a.Extras.isAny() {
+		return "note: what --show and --design add stands in CSV and JSON\n"
+	}
+	return ""
+}
+
 // remark is a line, or none where ordinates are exact.
 func (e *GridError) remark() string {
 	if e == nil {
@@ -93,7 +101,7 @@ func (a *PortfolioAnswer) table(units Units) []byte {
 	}
 	text := fmt.Appendf(nil, "Demand on %s, %s ordinates%s\n%s\n%s\n", countOf(len(a.Rows), "structure", "structures"), a.Ordinates,
 		a.envelopeWords(), a.Selection.heading(), a.Selection.methodLine())
-	return append(append(t.appendTo(text), '\n'), a.Remarks()...)
+	return append(append(append(t.appendTo(text), '\n'), a.tableRemarks()...), a.Remarks()...)
 }
 
 func (a *PortfolioAnswer) hasBand() bool {
@@ -110,8 +118,8 @@ func (a *PortfolioAnswer) envelopeWords() string {
 
 func (a *PortfolioAnswer) tableRow(row *PortfolioRow, units Units) []string {
 	s := row.Structure
-	displacement := row.quantity("sd_m", false)
-	cells := []string{s.ID, figure(s.PeriodS), percentText(s.Damping), fmt.Sprint(displacement.Count)}
+	compared := row.quantity("sd_m", true)
+	cells := []string{s.ID, figure(s.PeriodS), percentText(s.Damping), fmt.Sprint(compared.Count)}
 	for _, c := range columnsOfPortfolio {
 		_, per := quantityUnits[c.name].in(units)
 		x := row.quantity(c.name, true)
@@ -119,8 +127,15 @@ func (a *PortfolioAnswer) tableRow(row *PortfolioRow, units Units) []string {
 			cells = append(cells, percentileCell(x, i, per))
 		}
 	}
-	worst := row.worst(a.greatest())
-	return append(cells, figure(worst.ratio), worst.name, percentTitle(worst.above), a.Selection.governingText(displacement))
+	worst := row.worst(a.Percentiles)
+	ratio, name, above, governing := "-", "-", "-", a.Selection.governingText(compared)
+	if worst != nil {
+		ratio, name, above, governing = figure(worst.ratio), worst.Name, percentTitle(worst.Above), worst.Governing
+		if worst.percent != a.Percentiles[a.greatest()] {
+			ratio += " (p" + percentKey(worst.percent) + ")"
+		}
+	}
+	return append(cells, ratio, name, above, governing)
 }
 
 func percentileCell(x *Reduction, i int, per float64) string {
@@ -149,22 +164,24 @@ func (r *PortfolioRow) quantity(name string, overBand bool) *Reduction {
 	return &Reduction{Mean: nan, LogMean: nan, LogStd: nan, Min: nan, Max: nan}
 }
 
-// worstLimit is the limit that the demand comes nearest to, or exceeds most.
+// worstLimit is the limit that the demand comes nearest to, or exceeds most, by a percentile.
 type worstLimit struct {
-	name         string
-	ratio, above float64
+	*LimitRatio
+	ratio, percent float64
 }
 
-// worst takes the percentile of this position. Name is "-" and the ratio NaN where no
-// limit is given or the percentile is not supported.
-func (r *PortfolioRow) worst(percentile int) worstLimit {
-	worst := worstLimit{"-", math.NaN(), math.NaN()}
-	for _, l := range r.Limits {
-		if percentile < 0 || percentile >= len(l.Percentiles) {
-			continue
-		}
-		if x := l.Percentiles[percentile]; !(x <= worst.ratio) && isDefined(x) {
-			worst = worstLimit{l.Name, x, l.Above}
+// worst takes the highest of the percentiles that the sample supports. It is nil where no
+// limit is given or none is supported.
+func (r *PortfolioRow) worst(percents []float64) *worstLimit {
+	var worst *worstLimit
+	for i := range r.Limits {
+		l := &r.Limits[i]
+		for k, x := range l.Percentiles {
+			switch p := percents[k]; {
+			case !isDefined(x):
+			case worst == nil, p > worst.percent, p == worst.percent && x > worst.ratio:
+				worst = &worstLimit{l, x, p}
+			}
 		}
 	}
 	return worst
@@ -184,22 +201,18 @@ var portfolioQuantities = []string{"sd_m", "psa_g", "base_shear_n", "base_moment
 // limitNames are the limits of CSV files.
 var limitNames = []string{"displacement", "drift", "base_shear"}
 
-// csv has a row a structure.
+// csv has a row a structure, and the same columns whatever the structures are.
 func (a *PortfolioAnswer) csv() []byte {
-	names := slices.Clone(portfolioQuantities)
-	if slices.ContainsFunc(a.Rows, func(r PortfolioRow) bool { return len(r.Structure.Modes) > 0 }) {
-		names = append(names, "base_shear_srss_n", "base_moment_srss_nm")
-	}
-	hasBand := a.hasBand()
+	names := append(slices.Clone(portfolioQuantities), "base_shear_srss_n", "base_moment_srss_nm")
 	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
 	var l csvLine
 	l.words("id", "name", "period_s", "damping", "mass_kg", "height_m", "modes", "count")
-	for _, prefix := range a.prefixes(names, hasBand) {
+	for _, prefix := range prefixes(names) {
 		for i := range list {
 			l.word(prefix + "_" + list[i].csv)
 		}
 	}
-	l.words("band_from_s", "band_to_s")
+	l.words("band_from_s", "band_to_s", "band_count")
 	for _, limit := range limitNames {
 		l.word(limit + "_limit")
 		for _, p := range a.Percentiles {
@@ -207,26 +220,24 @@ func (a *PortfolioAnswer) csv() []byte {
 		}
 		l.words(limit+"_ratio_max", limit+"_share_above")
 	}
-	l.words("ratio", "governing_limit")
+	l.words("ratio", "ratio_percentile", "governing_limit", "limit_governing")
 	l.words(a.Selection.csvGoverning()...)
 	l.end()
 	for i := range a.Rows {
-		a.csvRow(&l, &a.Rows[i], list, names, hasBand)
+		a.csvRow(&l, &a.Rows[i], list, names)
 	}
 	return l.text
 }
 
-func (a *PortfolioAnswer) prefixes(names []string, hasBand bool) []string {
+func prefixes(names []string) []string {
 	out := slices.Clone(names)
-	if hasBand {
-		for _, name := range portfolioQuantities {
-			out = append(out, "band_"+name)
-		}
+	for _, name := range portfolioQuantities {
+		out = append(out, "band_"+name)
 	}
 	return out
 }
 
-func (a *PortfolioAnswer) csvRow(l *csvLine, row *PortfolioRow, list []statistic, names []string, hasBand bool) {
+func (a *PortfolioAnswer) csvRow(l *csvLine, row *PortfolioRow, list []statistic, names []string) {
 	s := row.Structure
 	l.words(s.ID, s.Name)
 	l.number(s.PeriodS)
@@ -249,16 +260,18 @@ func (a *PortfolioAnswer) csvRow(l *csvLine, row *PortfolioRow, list []statistic
 		}
 	}
 	figures(row.Quantities, names)
-	from, to := math.NaN(), math.NaN()
-	if hasBand {
-		var quantities []Quantity
-		if row.Band != nil {
-			quantities, from, to = row.Band.Quantities, row.Band.FromS, row.Band.ToS
-		}
-		figures(quantities, portfolioQuantities)
+	band := row.Band
+	if band == nil {
+		band = &DemandBand{FromS: math.NaN(), ToS: math.NaN()}
 	}
-	l.number(from)
-	l.number(to)
+	figures(band.Quantities, portfolioQuantities)
+	l.number(band.FromS)
+	l.number(band.ToS)
+	if x := reductionOf(band.Quantities, "sd_m"); x != nil {
+		l.integer(x.Count)
+	} else {
+		l.word("")
+	}
 	a.csvLimits(l, row)
 	l.word(displacement.Governing)
 	if a.Selection.hasRoles() {
@@ -293,12 +306,14 @@ func (a *PortfolioAnswer) csvLimits(l *csvLine, row *PortfolioRow) {
 		l.number(limit.Max)
 		l.number(limit.Above)
 	}
-	worst := row.worst(a.greatest())
-	l.number(worst.ratio)
-	if worst.name == "-" {
-		worst.name = ""
+	worst := row.worst(a.Percentiles)
+	if worst == nil {
+		l.words("", "", "", "")
+		return
 	}
-	l.word(worst.name)
+	l.number(worst.ratio)
+	l.number(worst.percent)
+	l.words(worst.Name, worst.Governing)
 }
 
 func (a *PortfolioAnswer) object() object {
@@ -313,17 +328,16 @@ func (a *PortfolioAnswer) object() object {
 
 func (a *PortfolioAnswer) rowObject(row *PortfolioRow, list []statistic) object {
 	s := row.Structure
-	worst := row.worst(a.greatest())
 	o := object{
 		{"id", s.ID}, {"name", s.Name}, {"period_s", s.PeriodS}, {"damping", s.Damping}, {"mass_kg", orNaN(s.MassKG)}, {"height_m", orNaN(s.HeightM)},
 		{"modes", len(s.Modes)}, {"quantities", a.Selection.quantitiesObject(list, row.Quantities)}, {"band", nil}, {"limits", a.limitsObject(row)},
-		{"ratio", worst.ratio}, {"governing_limit", nil},
+		{"ratio", nil}, {"ratio_percentile", nil}, {"governing_limit", nil}, {"limit_governing", nil},
 	}
 	if row.Band != nil {
 		o[8].value = a.Selection.bandObject(list, row.Band)
 	}
-	if worst.name != "-" {
-		o[11].value = worst.name
+	if worst := row.worst(a.Percentiles); worst != nil {
+		o[10].value, o[11].value, o[12].value, o[13].value = worst.ratio, worst.percent, worst.Name, worst.Governing
 	}
 	return o
 }
@@ -335,7 +349,7 @@ func (a *PortfolioAnswer) limitsObject(row *PortfolioRow) object {
 		for i, p := range a.Percentiles {
 			ratios = append(ratios, field{percentKey(p), l.Percentiles[i]})
 		}
-		o = append(o, field{l.Name, object{{"limit", l.Limit}, {"ratios", ratios}, {"max_ratio", l.Max}, {"share_above", l.Above}}})
+		o = append(o, field{l.Name, object{{"limit", l.Limit}, {"ratios", ratios}, {"max_ratio", l.Max}, {"share_above", l.Above}, {"count", l.Count}, {"governing", l.Governing}}})
 	}
 	return o
 }

@@ -192,5 +192,5 @@ func (a *SpectrumAnswer) object(units Units) object {
 
 // object describes the group.
 func (g *Group) object() object {
-	return object{{"group", g.Label}, {"records", g.Records}, {"spectra", g.Spectra}, {"events", g.Events}}
+	return object{{"group", g.Label}, {"from", orNaN(g.From)}, {"to", orNaN(g.To)}, {"records", g.Records}, {"spectra", g.Spectra}, {"events", g.Events}}
 }

@@ -22,7 +22,7 @@ type Scope struct {
 	Event string
 }
 
-// EventLatest stands for the last event of the records that the rest of the scope takes.
+// EventLatest stands for the last event of the motions that everything else takes.
 const EventLatest = "latest"
 
 // Near takes the records of stations within a distance of a point.
@@ -168,34 +168,23 @@ func timeOf(r *db.Record) time.Time {
 	return r.Start.UTC()
 }
 
-// withLatest replaces EventLatest by the code of the event, the first by code where several
-// have the last time. The error is an EmptyError where the rest of the scope takes no
-// record of an event of known time.
-func (s Scope) withLatest(held []db.HeldComponent) (Scope, error) {
-	if s.Event != EventLatest {
-		return s, nil
-	}
-	s.Event = ""
+// latestOf is the last event of these motions, the first by code where several have the
+// last time; "" where of none the time is known.
+func latestOf(motions []motion) string {
 	var latest *db.Event
-	records := 0
-	for components := range byRecord(held) {
-		records++
-		r := components[0].Record
-		if r.Event == nil || r.Event.Origin.IsZero() {
+	for i := range motions {
+		e := motions[i].members[0].Record.Event
+		if e == nil || e.Origin.IsZero() {
 			continue
 		}
-		if unknown, isIn := s.ask(r); !isIn || unknown != "" {
-			continue
-		}
-		if latest == nil || r.Event.Origin.After(latest.Origin) || r.Event.Origin.Equal(latest.Origin) && r.Event.Code < latest.Code {
-			latest = r.Event
+		if latest == nil || e.Origin.After(latest.Origin) || e.Origin.Equal(latest.Origin) && e.Code < latest.Code {
+			latest = e
 		}
 	}
 	if latest == nil {
-		return s, &EmptyError{Held: records, Hint: "of no record the time of the event is known and what else was asked for met"}
+		return ""
 	}
-	s.Event = latest.Code
-	return s, nil
+	return latest.Code
 }
 
 // words describe the scope for people, each part behind "; ".

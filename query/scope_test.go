@@ -92,12 +92,25 @@ func TestScopeThatTakesNothing(t *testing.T) {
 		want  string
 	}{
 		{Scope{Event: "QX"}, "6 records are outside the place, time or event"},
-		{Scope{Event: EventLatest, Near: &Near{-40, 20, 10}}, "of no record the time of the event is known"},
+		{Scope{Event: EventLatest, Near: &Near{-40, 20, 10}}, "5 records are outside the place, time or event"},
 	} {
 		_, err := SpectrumQuestion{Selection: Selection{Scope: c.scope}, Damping: 0.05}.Ask(t.Context(), store)
 		if empty, ok := errors.AsType[*EmptyError](err); !ok || !strings.Contains(empty.Error(), c.want) {
 			t.Errorf("%+v: %v, want %q", c.scope, err, c.want)
 		}
+	}
+}
+
+// The latest event is that of what everything else takes.
+func TestLatestOfTheSelection(t *testing.T) {
+	store := newStore(t, handGrid, scopeRecords())
+	a := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Where: "magnitude < 6", Scope: Scope{Event: EventLatest}}, Damping: 0.05})
+	if a.Selection.Scope.Event != "QB" || a.Selection.Records != 1 {
+		t.Errorf("%+v", a.Selection)
+	}
+	_, err := SpectrumQuestion{Selection: Selection{Where: `event == "QC"`, Scope: Scope{Event: EventLatest}}, Damping: 0.05}.Ask(t.Context(), store)
+	if empty, ok := errors.AsType[*EmptyError](err); !ok || !strings.Contains(empty.Error(), "of no motion that is selected the time of the event is known") {
+		t.Errorf("of no known time: %v", err)
 	}
 }
 

@@ -69,8 +69,9 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err != nil {
 		return nil, err
 	}
-	if s.Scope, err = s.Scope.withLatest(held); err != nil {
-		return nil, err
+	isLatest := s.Scope.Event == EventLatest
+	if isLatest {
+		s.Scope.Event = "" // until it is known what everything else takes
 	}
 	p := &picker{selection: s, condition: condition, sitings: sitings, details: details}
 	p.hint, p.leftOut, p.ignoresBand, p.screen = p.hintOf(), map[string]int{}, s.IgnoreUsableBand, s.Screen
@@ -88,8 +89,11 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 	if err := p.findUnsolved(ctx, snapshot); err != nil {
 		return nil, err
 	}
-	for components := range byRecord(held) {
-		if err := p.take(components); err != nil {
+	if err := p.takeAll(held); err != nil {
+		return nil, err
+	}
+	if isLatest {
+		if err := p.takeLatest(held); err != nil {
 			return nil, err
 		}
 	}
@@ -97,6 +101,30 @@ func pick(ctx context.Context, snapshot *db.Snapshot, s Selection, details db.De
 		return nil, err
 	}
 	return &p.picked, p.finish()
+}
+
+func (p *picker) takeAll(held []db.HeldComponent) error {
+	for components := range byRecord(held) {
+		if err := p.take(components); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// takeLatest takes, of what was taken, the last event.
+func (p *picker) takeLatest(held []db.HeldComponent) error {
+	if len(p.motions) == 0 {
+		return nil
+	}
+	code := latestOf(p.motions)
+	p.motions, p.leftOut, p.unmet, p.outside, p.held = p.motions[:0], map[string]int{}, 0, 0, 0
+	if code == "" {
+		p.hint = "of no motion that is selected the time of the event is known"
+		return nil
+	}
+	p.selection.Scope.Event, p.report.Scope.Event = code, code
+	return p.takeAll(held)
 }
 
 // findRepeated reads which motions are versions of one. Where all are asked for it names

@@ -152,7 +152,7 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		return nil, err
 	}
 	picked.report.noteMethod(q.Method)
-	picked.report.Notes = append(picked.report.Notes, q.Extras.notes(&picked.report, q.Damping)...)
+	picked.report.Notes = append(picked.report.Notes, append(q.Extras.notes(&picked.report), q.Extras.dampingNote(q.Damping)...)...)
 	answer := &SpectrumAnswer{
 		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
 		PeriodsS: periods, By: q.By, Extras: q.Extras,

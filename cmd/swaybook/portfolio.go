@@ -12,8 +12,12 @@ import (
 	"swaybook/query"
 )
 
-// oneStructure are the flags that describe a single structure, or part its answer.
-var oneStructure = []string{"period", "stiffness", "weight", "mass", "height", "damping", "band", "by"}
+// Flags that have no place beside others.
+var (
+	described    = []string{"period", "stiffness", "weight", "mass", "height", "damping", "band"} // by the file
+	oneStructure = []string{"by", "resamples", "seed"}
+	statistics   = []string{"balance", "percentiles", "show", "confidence", "design"}
+)
 
 // queryPortfolio answers for the structures of a file.
 func queryPortfolio(c *cli.Context) error {
@@ -34,10 +38,14 @@ type portfolioOptions struct {
 }
 
 func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
-	for _, flag := range oneStructure {
-		if c.IsSet(flag) {
-			return o, usagef("--structures and --%s exclude each other: the file says it of every structure", flag)
-		}
+	err = errors.Join(
+		exclude(c, described, "--structures and --%s exclude each other: the file says it of every structure"),
+		exclude(c, oneStructure, "--%s is of one structure, not of --structures"))
+	if c.IsSet("nearest") {
+		err = errors.Join(err, exclude(c, statistics, "--%s is of statistics, not of estimates from the --nearest stations"))
+	}
+	if err != nil {
+		return o, err
 	}
 	if o.nearest = c.Int("nearest"); c.IsSet("nearest") && o.nearest < 1 {
 		return o, usagef("--nearest %d: want at least 1", o.nearest)
@@ -52,6 +60,16 @@ func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&o.units, c, "units", query.ParseUnits),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }))
+}
+
+// exclude refuses flags.
+func exclude(c *cli.Context, flags []string, why string) error {
+	for _, flag := range flags {
+		if c.IsSet(flag) {
+			return usagef(why, flag)
+		}
+	}
+	return nil
 }
 
 // demands is an answer for many structures.

@@ -29,7 +29,7 @@ func selectionFlags(component, siting string) []cli.Flag {
 		&cli.StringFlag{Name: "near", Usage: "stations within a distance: `LAT,LON,KM`, degrees positive north and east"},
 		&cli.StringFlag{Name: "since", Usage: "events from `DATE` on: 2019, 2019-07, 2019-07-06 or 2019-07-06T03:19:53Z (UTC)"},
 		&cli.StringFlag{Name: "until", Usage: "events up to `DATE`, the whole of that year, month or day"},
-		&cli.StringFlag{Name: "event", Usage: "records of one event by its `CODE`, or latest: the last in the rest of what is asked for"},
+		&cli.StringFlag{Name: "event", Usage: "records of one event by its `CODE`, or latest: the last of what is selected otherwise"},
 		&cli.StringFlag{Name: "component", Usage: component},
 		&cli.StringFlag{Name: "siting", Usage: siting},
 	}
@@ -136,10 +136,14 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 
 // newExtras reads the flags of further figures.
 func newExtras(e *query.Extras, c *cli.Context) error {
-	return errors.Join(
+	err := errors.Join(
 		parseInto(e, c, "show", query.ParseExtras),
 		parseInto(&e.Level, c, "confidence", query.ParseLevel),
 		parseInto(&e.Design, c, "design", query.ReadDesign))
+	if c.IsSet("confidence") && !e.Intervals && e.Bootstrap.Resamples == 0 {
+		return usagef("--confidence goes with --show intervals or bootstrap")
+	}
+	return err
 }
 
 // setBootstrap reads the flags of a bootstrap that is asked for.

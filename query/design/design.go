@@ -25,7 +25,9 @@ type Spectrum struct {
 	notes   []string
 	damping float64
 	byEta   bool // defined for other dampings too
-	shape   shape
+	// direction is "horizontal", "vertical", or "" where the file does not say.
+	direction string
+	shape     shape
 }
 
 // shape is the form of a spectrum.
@@ -44,6 +46,12 @@ func (s Spectrum) Words() string { return s.words }
 
 // Notes are sentences that belong to any answer in which the spectrum stands.
 func (s Spectrum) Notes() []string { return s.notes }
+
+// HasDirection reports whether the file says of which direction the spectrum is.
+func (s Spectrum) HasDirection() bool { return s.direction != "" }
+
+// IsVertical reports whether the spectrum is of the vertical direction.
+func (s Spectrum) IsVertical() bool { return s.direction == "vertical" }
 
 // Damping returns the damping ratio for which the spectrum is defined, and
 // whether it is for that one only.

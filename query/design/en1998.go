@@ -110,7 +110,8 @@ const (
 
 // readEN1998 sets the spectrum to what the file asks for.
 func (s *Spectrum) readEN1998(k *keys) {
-	if k.word("direction", "horizontal", "horizontal", "vertical") == "vertical" {
+	s.direction = k.word("direction", "horizontal", "horizontal", "vertical")
+	if s.IsVertical() {
 		s.readVertical(k)
 		return
 	}
