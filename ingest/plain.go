@@ -78,10 +78,10 @@ func (plain) Parse(content *Content, hints Hints) ([]Channel, error) {
 		return nil, err
 	}
 	columns, rows, err := head.read(t, form)
-	if other := head.otherInWords(columns, hints); other != nil {
-		return nil, other
-	}
 	if err != nil {
+		return nil, err
+	}
+	if err := head.otherInWords(columns, hints); err != nil {
 		return nil, err
 	}
 	if err := head.checkCount(len(rows.line)); err != nil {
