@@ -148,3 +148,36 @@ func TestPlainHeadsOfOtherMotions(t *testing.T) {
 		headCase{"# scale: 0.5\nAcc (g)", `g 0.02;line 1: "scale: 0.5" speaks of counts or a scale: the numbers taken as g;the file says g: gal from --unit not used`},
 	), values, forAll)
 }
+
+// What a digitiser makes of volts says nothing of the numbers, unless the line says that
+// they are counts.
+func TestPlainHeadsOfDigitisers(t *testing.T) {
+	forAll := Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.02}
+	var cases []headCase
+	for _, line := range []string{
+		"Digitizer: 24 bit, 2.38 uV/count", "LSB: 0.6 uV/count", "LSB: 0.6 µV per count", "Recorder gain 419430 counts/V", "0.4 counts per uV", "1e6 counts per volt",
+	} {
+		cases = append(cases, headCase{line, "gal 0.02;"}, headCase{"# " + line, "gal 0.02;"})
+	}
+	for _, line := range []string{"Data in counts, 2.38 uV/count", "raw counts (0.4 counts per uV)", "1.02e-6 g/count, 2.38 uV/count", "counts/V, 980 counts per g"} {
+		cases = append(cases, headCase{"# " + line, fmt.Sprintf("case:1: unit: %s speaks of counts or a scale, --unit says gal: state the unit as # unit: …", found(line))})
+	}
+	checkHeads(t, cases, column(20, "%.4f"), forAll)
+}
+
+// A sentence on the unit of the numbers is no name of their column: it agrees with a
+// unit that is stated, or contradicts it.
+func TestPlainHeadsOfTitlesWithUnits(t *testing.T) {
+	values := column(20, "%.4f")
+	for line, unit := range map[string]string{
+		"Values in meters per second squared": "m/s2", "Data in meters per second per second": "m/s2", "Amplitude in cm/sec squared": "cm/s2", "Acceleration values in cm per second squared": "cm/s2",
+		"Data in g": "g", "Accel data (mm/s2)": "mm/s2",
+	} {
+		forAll := Hints{Unit: unit, UnitFrom: "--unit", UnitForAll: true, StepS: 0.02}
+		checkHeads(t, []headCase{{line, unit + " 0.02;"}, {"# " + line, unit + " 0.02;"}}, values, forAll)
+		forAll.Unit = "ft/s2"
+		checkHeads(t, []headCase{{line, fmt.Sprintf("case:1: unit: %s speaks of %s, --unit says ft/s2: state the unit as # unit: …", found(line), unit)}}, values, forAll)
+	}
+	checkHeads(t, []headCase{{"Data in cm/s", `case:1: unit: "Data in cm/s" speaks of cm/s, which is no acceleration, --unit says gal: state the unit as # unit: …`}},
+		values, Hints{Unit: "gal", UnitFrom: "--unit", UnitForAll: true, StepS: 0.02})
+}

@@ -83,6 +83,9 @@ func (c *plainColumn) dropProse(single bool) {
 	}
 }
 
+// numbersNamed are words for the numbers that begin a sentence on their unit.
+var numbersNamed = regexp.MustCompile(`(?i)^(?:(?:acceleration|accel|acc) +)?(?:values|data|amplitudes?|samples)$`)
+
 // isProse reports whether a line, of whose words some are no names of columns, is
 // none of names: a title, of blanks between words perhaps, or, of comments, whatever
 // does not begin with a time.
@@ -104,8 +107,8 @@ func isProse(columns []plainColumn, sure, blanks bool) bool {
 	case !sure:
 		return len(columns) == 1 || first.kind != columnTime && first.kind != columnSpectral && !isSeconds(first.unit.text)
 	case len(columns) == 1:
-		_, unit := splitUnit(first.name)
-		return strings.ContainsAny(first.name, " \t") && !isUnitWord(unit)
+		base, unit := splitUnit(first.name)
+		return strings.ContainsAny(first.name, " \t") && (!isUnitWord(unit) || numbersNamed.MatchString(base))
 	}
 	return false
 }

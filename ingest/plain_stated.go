@@ -87,7 +87,9 @@ var (
 // Lines that say that the numbers are counts, or by what to multiply them, those that speak
 // of counts which are no more, and those of units that are not known, or multiples of one.
 var (
-	counted    = regexp.MustCompile(`(?i)^(?:counts?|cts)$|\b(?:in|as|are|raw|digital|digiti[sz]er|adc|a/d|bit|integer|units?:?) +(?:counts?|cts)\b|[(\[] *(?:counts?|cts) *[)\]]|(?:/|\bper\b) *counts?\b|\bcounts? *(?:/|\bper\b)|\b1 *counts? *=`)
+	counted = regexp.MustCompile(`(?i)^(?:counts?|cts)$|\b(?:in|as|are|raw|digital|digiti[sz]er|adc|a/d|bit|integer|units?:?) +(?:counts?|cts)\b|[(\[] *(?:counts?|cts) *[)\]]|(?:/|\bper\b) *counts?\b|\bcounts? *(?:/|\bper\b)|\b1 *counts? *=`)
+	// voltCounts are what a digitiser makes of its input, whatever the numbers are.
+	voltCounts = regexp.MustCompile(`(?i)\bcounts? *(?:/|per\b) *(?:[µμum]|micro|milli)?v(?:olts?)?\b|(?:[µμum]|micro|milli)?v(?:olts?)? *(?:/|per\b) *counts?\b`)
 	recounted  = regexp.MustCompile(`(?i)\bfrom +(?:\w+ +)?counts?\b|\bcounts?\b[^.]*\b(?:converted|divided)\b|\bmultiplied\b`)
 	otherScale = regexp.MustCompile(`(?i)\bm(?:illi)?gals?\b|(?:%|\bpercent(?: +of)?) *g(?:$|[^\pL\d])` +
 		`|\bin +(?:\d*\.?\d+|10 *\^ *-?\d+) *(?:gals?|m?g|(?:cm|mm|m)/s\S*)(?:$|[\s),;])` +
@@ -105,6 +107,7 @@ func isScaled(text string) bool {
 		v, ok := parseNumber([]byte(m[1]))
 		return ok && v != 1
 	}
+	text = voltCounts.ReplaceAllString(text, "")
 	return multiplied.MatchString(text) || otherScale.MatchString(text) && !otherUnits.MatchString(text) || counted.MatchString(text) && (!recounted.MatchString(text) || unchanged.MatchString(text)) && !otherUnits.MatchString(text)
 }
 
