@@ -28,12 +28,15 @@ const (
 //
 // with the event of EventCode and the station's network and StationCode. Where
 // one of the two is unknown, the id is the base of the file's stem as SplitStem
-// gives it. Ids hold only A–Z, a–z, 0–9, stop, hyphen and the underscore between
+// gives it, or all of the stem where it ends in the station's code. Ids hold only A–Z, a–z, 0–9, stop, hyphen and the underscore between
 // parts, are at most 160 characters long and never empty.
 func RecordID(c *Channel, stem string) (id string, fromHeader bool) {
 	event, station := EventCode(c), StationCode(c)
 	if event == "" || station == "" {
-		base, _ := SplitStem(stem)
+		base, o := SplitStem(stem)
+		if c.namesStation(o) {
+			base = stem
+		}
 		return orElse(clean(base, "_", maxStem), "record"), false
 	}
 	if c.Station.Code != "" {
@@ -169,7 +172,7 @@ func direction(label string) (Orientation, bool) {
 var (
 	// stemToken is a direction after a separator at the end of a stem; a digit
 	// after NS, EW or UD numbers the sensor.
-	stemToken = regexp.MustCompile(`(?i)^(.*?)[-_. ]+(N-S|E-W|U-D|H1|H2|(?:NS|EW|UD)\d?|LONG|TRANS?|VERT?|VRT|UP|DO?WN|DN|[NESWZVULT]|\d{3}|(?-i:[FGDCESHBML][NG][ENZ]))$`)
+	stemToken = regexp.MustCompile(`(?i)^(.*?)[-_. ]+(N-S|E-W|U-D|H1|H2|(?:NS|EW|UD)\d?|LONG|TRANS?|VERT?|VRT|UP|DO?WN|DN|[NESWZVULT]|\d{3}|(?-i:` + stemCodes + `))$`)
 	// stemDigits are three digits that touch a letter. After a digit they may be
 	// part of a station code, a date or a time.
 	stemDigits = regexp.MustCompile(`^(.*[A-Za-z])(\d{3})$`)
@@ -181,19 +184,26 @@ var (
 	stemSequence = regexp.MustCompile(`(?i)^(RSN\d+.*[A-Z0-9])(UP|DWN|VER)$`)
 )
 
+// stemCodes are the channel codes that count at the end of a stem: those of accelerometers
+// that are in common use. Others are codes of stations more often.
+const stemCodes = `[HBELC]N[ENZ]`
+
+var stemCode = regexp.MustCompile(`^` + stemCodes + `$`)
+
 // SplitStem splits the direction off a file's base name without extension and
 // returns what is left, which the components of one record share, and the
 // direction:
 //
 //	after a separator  H1 H2 V, N E Z, S W, NS EW UD, N-S E-W U-D, NS1 EW1 UD1 …,
 //	                   UP DN DWN DOWN, VER VERT VRT, L T, LONG TRAN, 000 to 360,
-//	                   channel codes of accelerometers in capitals, HNE HNN HNZ …
+//	                   HNE HNN HNZ and those of the bands B, E, L, C in capitals
 //	touching           000 to 360 after a letter, NS EW UD after a digit, and UP DWN
 //	                   VER in names that begin with RSN and a number
 //
 // Case does not matter. Numbers of one or two digits and those from 001 to 009 are
-// left alone, since they count files more often than they give a direction. The number of a sensor (NS1) stays
-// with the base. Where no direction is found, or nothing but it, the base is the
+// left alone, since they count files more often than they give a direction. The number
+// of a sensor (NS1) stays with the base, and so do band and instrument of a channel
+// code (HN), of which a station may have several. Where no direction is found, or nothing but it, the base is the
 // whole stem.
 func SplitStem(stem string) (base string, o Orientation) {
 	if o, ok := stemDirection(stem); ok {
@@ -208,6 +218,8 @@ func SplitStem(stem string) (base string, o Orientation) {
 		sensor := ""
 		if n := len(token); n == 3 && isLetter(token[0]) && isDigit(token[2]) {
 			token, sensor = token[:2], "_"+token[2:]
+		} else if isStemCode(token) {
+			sensor = "_" + token[:2]
 		}
 		if o, ok := stemDirection(token); ok && base != "" {
 			return base + sensor, o
@@ -222,8 +234,8 @@ func stemDirection(token string) (Orientation, bool) {
 		return Orientation{}, false
 	}
 	o, ok := direction(token)
-	if channel := codeOf(token); !ok && !channel.velocity && channel.code == token {
-		o, ok = channel.direction()
+	if !ok && isStemCode(token) {
+		o, ok = codeOf(token).direction()
 	}
 	if !ok {
 		return Orientation{}, false
@@ -231,13 +243,28 @@ func stemDirection(token string) (Orientation, bool) {
 	return o, true
 }
 
-// WarnOfStem warns where the channel's azimuth is one that a file's stem gave in
-// degrees, unless it is along an axis: other numbers of three digits at the end of
-// a name may count something.
-func (c *Channel) WarnOfStem(stem string) {
+// isStemCode reports whether a token of a stem is a channel code that gives a direction.
+func isStemCode(token string) bool { return stemCode.MatchString(token) }
+
+// namesStation reports whether what looks like a channel code at the end of a stem is
+// the code or name of the channel's station.
+func (c *Channel) namesStation(o Orientation) bool {
+	return isStemCode(o.Label) && (strings.EqualFold(o.Label, c.Station.Code) || strings.EqualFold(o.Label, c.Station.Name))
+}
+
+// CheckStem takes a direction that a file's stem gave back where it is the station's
+// code, and warns of one by a channel code, which may be that of a station nobody
+// states, or in degrees, unless it is along an axis: other numbers of three digits at
+// the end of a name may count something.
+func (c *Channel) CheckStem(stem string) {
 	_, o := SplitStem(stem)
-	if o.Label == "" || !isDigit(o.Label[0]) || math.Mod(o.AzimuthDeg.Value, 90) == 0 || c.Orientation != o {
-		return
+	switch {
+	case o.Label == "" || c.Orientation != o:
+	case c.namesStation(o):
+		c.Orientation = Orientation{}
+	case isStemCode(o.Label):
+		c.warn("direction of channel %s taken from the file's name", o.Label)
+	case isDigit(o.Label[0]) && math.Mod(o.AzimuthDeg.Value, 90) != 0:
+		c.warn("direction %g° taken from the file's name", o.AzimuthDeg.Value)
 	}
-	c.warn("direction %g° taken from the file's name", o.AzimuthDeg.Value)
 }

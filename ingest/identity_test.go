@@ -65,7 +65,7 @@ func TestSplitStem(t *testing.T) {
 		{"quake_H1", "quake", "h #1"}, {"quake-h2", "quake", "h #2"}, {"quake.V", "quake", "v"},
 		{"quake_N", "quake", "h 0"}, {"quake_E", "quake", "h 90"}, {"quake Z", "quake", "v"}, {"quake_S", "quake", "h 180"}, {"quake_W", "quake", "h 270"},
 		{"quake_NS", "quake", "h 0"}, {"quake_ew", "quake", "h 90"}, {"quake_UD", "quake", "v"}, {"quake_N-S", "quake", "h 0"}, {"quake-E-W", "quake", "h 90"},
-		{"ABC_HNE", "ABC", "h 90"}, {"XX.ABC.00.HGZ", "XX.ABC.00", "v"}, {"HNN", "HNN", "h 0"}, {"ABC_HN1", "ABC_HN1", ""}, {"ABC_HHZ", "ABC_HHZ", ""}, {"2041_ene", "2041_ene", ""},
+		{"ABC_HNE", "ABC_HN", "h 90"}, {"XX.ABC.00.BNZ", "XX.ABC.00_BN", "v"}, {"HNN", "HNN", "h 0"}, {"EQ1_HGN", "EQ1_HGN", ""}, {"EQ1_BGE", "EQ1_BGE", ""}, {"EQ1_FNE", "EQ1_FNE", ""}, {"EQ1_BLN", "EQ1_BLN", ""}, {"ABC_HN1", "ABC_HN1", ""}, {"ABC_HHZ", "ABC_HHZ", ""}, {"2041_ene", "2041_ene", ""},
 		{"XYZ_NS1", "XYZ_1", "h 0"}, {"XYZ_EW2", "XYZ_2", "h 90"}, {"ABC0014103040812NS2", "ABC0014103040812_2", "h 0"}, {"ABC001EW", "ABC001", "h 90"},
 		{"XYZ000", "XYZ", "h 0"}, {"XYZ090", "XYZ", "h 90"}, {"XYZ360", "XYZ", "h 0"}, {"XYZ-UP", "XYZ", "v"}, {"XYZ-DWN", "XYZ", "v"}, {"quake_230", "quake", "h 230"},
 		{"RSN123_NORTHWATER_CDH090", "RSN123_NORTHWATER_CDH", "h 90"}, {"RSN123_NORTHWATER_CDHUP", "RSN123_NORTHWATER_CDH", "v"}, {"RSN9_NW_RIVERVER", "RSN9_NW_RIVER", "v"},
@@ -85,20 +85,28 @@ func TestSplitStem(t *testing.T) {
 }
 
 // A number of three digits may count files: it is taken, and that is said.
-func TestWarnOfStem(t *testing.T) {
+func TestCheckStem(t *testing.T) {
 	for stem, want := range map[string]string{
 		"motion_050": "direction 50° taken from the file's name", "CDH230": "direction 230° taken from the file's name",
-		"motion_000": "", "motion_090": "", "motion_180": "", "motion_270": "", "motion_360": "", "motion_N": "", "motion_1": "", "motion": "",
+		"motion_000": "", "motion_090": "", "motion_180": "", "motion_270": "", "motion_360": "", "motion_HNE": "direction of channel HNE taken from the file's name", "HNZ": "direction of channel HNZ taken from the file's name", "motion_N": "", "motion_1": "", "motion": "",
 	} {
 		_, o := SplitStem(stem)
 		c := Channel{Orientation: o}
-		if c.WarnOfStem(stem); strings.Join(c.Warnings, "; ") != want {
+		if c.CheckStem(stem); strings.Join(c.Warnings, "; ") != want {
 			t.Errorf("%s: warnings %q, want %q", stem, c.Warnings, want)
 		}
 	}
 	other := Channel{Orientation: azimuth(20)}
-	if other.WarnOfStem("motion_050"); len(other.Warnings) > 0 {
+	if other.CheckStem("motion_050"); len(other.Warnings) > 0 {
 		t.Errorf("the catalogue's azimuth: warnings %q", other.Warnings)
+	}
+	for _, station := range []Station{{Code: "HNN"}, {Code: "hnn"}, {Name: "HNN"}} {
+		_, o := SplitStem("EQ1_HNN")
+		c := Channel{Station: station, Orientation: o}
+		c.CheckStem("EQ1_HNN")
+		if id, _ := RecordID(&c, "EQ1_HNN"); c.Orientation != (Orientation{}) || len(c.Warnings) > 0 || id != "EQ1_HNN" {
+			t.Errorf("station %+v in the name: %+v, warnings %q, record %s", station, c.Orientation, c.Warnings, id)
+		}
 	}
 }
 

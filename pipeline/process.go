@@ -203,7 +203,7 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 		stated, matched = r.catalogue.Apply(file.Rel, c)
 	}
 	if silent {
-		c.WarnOfStem(stem)
+		c.CheckStem(stem)
 	}
 	return stated, matched
 }
