@@ -9,11 +9,13 @@ import (
 var quantityKeys = []string{"quantity", "type", "data_type"}
 
 // otherSeries returns a *NotMotionError where a key says in whole words that the
-// numbers are another quantity than acceleration, and no other line speaks of such.
+// numbers are another quantity than acceleration, and no other line speaks of such or
+// has its unit.
 func (h *plainHead) otherSeries() error {
 	s := h.stated(quantityKeys...)
 	if word := commentKey(s.text); isSeriesName(word) {
-		return h.notMotion(orElse(otherQuantity(word), spectraReason), s.line, true)
+		_, err := ParseUnit(h.stated(unitKeys...).text)
+		return h.notMotion(orElse(otherQuantity(word), spectraReason), s.line, err != nil, "correct the line")
 	}
 	return nil
 }
@@ -32,7 +34,7 @@ func (h *plainHead) otherInWords(columns []plainColumn, hints Hints) error {
 		switch {
 		case reason == "" || stated:
 		case hints.Unit == "" || hints.UnitForAll:
-			return h.notMotion(reason, l.line, sure)
+			return h.notMotion(reason, l.line, sure, "state their unit as # unit: …")
 		default:
 			h.doubt("line %d: %s speaks of another quantity: %s from %s taken", l.line, found(l.text), hints.Unit, orElse(hints.UnitFrom, "the hint"))
 		}
@@ -41,8 +43,8 @@ func (h *plainHead) otherInWords(columns []plainColumn, hints Hints) error {
 }
 
 // notMotion skips the file for the reason that the line gives, and refuses it where that
-// is not sure, or other words of the head speak of acceleration.
-func (h *plainHead) notMotion(reason string, line int, sure bool) error {
+// is not sure, or other words of the head speak of acceleration, with what to do then.
+func (h *plainHead) notMotion(reason string, line int, sure bool, cure string) error {
 	said := ""
 	for _, l := range h.lines {
 		text := spectrumSpoken.ReplaceAllString(l.words(), "") // acceleration response spectrum
@@ -57,7 +59,7 @@ func (h *plainHead) notMotion(reason string, line int, sure bool) error {
 	if sure {
 		return &NotMotionError{reason}
 	}
-	return refuse(line, "quantity", "%s may say %s: if the numbers are accelerations, state their unit as # unit: …, else leave the file out", found(said), reason)
+	return refuse(line, "quantity", "%s may say %s: if the numbers are accelerations, %s, else leave the file out", found(said), reason, cure)
 }
 
 // How a line says that the numbers are a velocity, a displacement or a spectrum, and
@@ -72,25 +74,27 @@ var (
 	spectralShort  = regexp.MustCompile(`^P?S[AVD]\b.*(?:%|damp)`)
 	notSpoken      = regexp.MustCompile(`(?i)model|sensor|seismomet|transducer|shear|wave|\bvs\d*\b|peak|\bpg[vd]\b|max|filter|window|baseline|\bfiles?\b|drift|residual|final|permanent|\bnot?\b|available|[:=] *[-+]?\.?\d`)
 	notSpectrum    = regexp.MustCompile(`(?i)match|compatib|target|design|\bscaled|filter|accelerogram|histor|\bnot?\b|\bfiles?\b|available|separat|\bsee\b|\balso\b|\bpeak\b`)
-	// statedNumber is that of an ordinate in the head, of no table of them.
-	statedNumber = regexp.MustCompile(`[:=] *[-+]?\.?\d`)
+	// statedOrdinate is one in the head with its unit, of no table of them; statedNumber
+	// may be the damping or a period of one.
+	statedOrdinate = regexp.MustCompile(`(?i)[:=] *[-+]?\.?\d[\d.]*(?:e[-+]?\d+)? *(?:m?g|gals?|(?:cm|mm|m|in|ft)(?: */ *s\S*)?)(?:$|[\s,;)])`)
+	statedNumber   = regexp.MustCompile(`[:=] *[-+]?\.?\d`)
 )
 
 // The rest of lines that are surely titles of spectra, what stands before the quantity
 // in those of series, and words of lines that may speak of anything.
 var (
 	spectrumRest = regexp.MustCompile(`(?i)^(?:[^\pL]|\b(?:damp(?:ing|ed)?|ratio|ordinates|values|data|ns|ew|ud|g|gal|cm|m|s|sec|hz)\b|\b(?:of|for|station|component)\b.*)*$`)
-	beforeSeries = regexp.MustCompile(`^(?:(?:[A-Z0-9][A-Z0-9._/-]*|(?i:(?:the|station|site|component|record|ground|(?:un)?corrected|processed|filtered|integrated(?: +(?:in)?to)?|converted +to|horizontal|vertical|north|east|up|\d+)))[\s,;:]+)*$`)
+	beforeSeries = regexp.MustCompile(`^(?:(?:[A-Z0-9][A-Z0-9._/-]*|(?i:(?:the|station|site|component|record|ground|(?:un)?corrected|recorded|processed|filtered|integrated(?: +(?:in)?to)?|converted +to|horizontal|vertical|north|east|up|\d+)))[\s,;:]+)*$`)
 	doubtful     = regexp.MustCompile(`(?i)zero|initial|condition|\btype\b|seismogra|vel.*disp|disp.*vel`)
 )
 
 // spokenQuantity returns why a file is no acceleration of whose numbers a line in words
 // speaks, "" where it says no such thing, and whether that is sure.
 func spokenQuantity(text string) (reason string, sure bool) {
-	if spectralShort.MatchString(text) && !statedNumber.MatchString(text) {
-		return spectraReason, true
+	if spectralShort.MatchString(text) && !statedOrdinate.MatchString(text) {
+		return spectraReason, !statedNumber.MatchString(text)
 	}
-	if at := spectrumSpoken.FindStringIndex(text); at != nil && !notSpectrum.MatchString(text) && !statedNumber.MatchString(text) {
+	if at := spectrumSpoken.FindStringIndex(text); at != nil && !notSpectrum.MatchString(text) {
 		return spectraReason, spectrumRest.MatchString(text[at[1]:])
 	}
 	sure = !doubtful.MatchString(text)

@@ -38,7 +38,7 @@ func TestPlainHeadsOfMentions(t *testing.T) {
 	const velocity, displacement = "velocity series, not acceleration", "displacement series, not acceleration"
 	var cases []headCase
 	for _, line := range []string{
-		"SA(1 s, 5% damping) = 0.03 g", "PSA at 1 s: 0.3 g, 5% damping", "PSV 5% = 20 cm/s", "Fourier spectrum peak at 2 Hz", "Response spectrum at 1 s: 0.3 g", "Correction: parabola fitted to velocity", "Processed by polynomial fit to velocity",
+		"SA(1 s, 5% damping) = 0.03 g", "PSA at 1 s: 0.3 g, 5% damping", "PSV 5% = 20 cm/s", "Fourier spectrum peak at 2 Hz", "Correction: parabola fitted to velocity", "Processed by polynomial fit to velocity",
 		"Corrected to minimise displacement", "Minimized final misfit in velocity", "Error of misfit in velocity",
 	} {
 		for _, title := range []string{"", "# Accelerogram, station ABC\n", "# Acceleration time history\n"} {
@@ -46,6 +46,7 @@ func TestPlainHeadsOfMentions(t *testing.T) {
 		}
 	}
 	for line, reason := range map[string]string{
+		"PSA, damping = 0.05": spectraReason, "SA 5%, T = 0.01 to 10 s": spectraReason, "Response spectrum at 1 s: 0.3 g": spectraReason,
 		"Response spectrum computed with 5% damping": spectraReason, "Elastic response spectra in Appendix": spectraReason, "Velocity, displacement: zero initial conditions": velocity, "VEL. TYPE SEISMOGRAPH": velocity,
 		"Noise level raised by integration to velocity": "", "Trend removed after integration to displacement": displacement,
 	} {
@@ -57,8 +58,9 @@ func TestPlainHeadsOfMentions(t *testing.T) {
 	}
 	checkHeads(t, append(cases,
 		headCase{"# Accelerogram, station ABC\n# Corrected velocity, station ABC", refused(2, "Corrected velocity, station ABC", velocity)},
-		headCase{"# quantity: velocity\n# Acceleration time history", refused(1, "quantity: velocity", velocity)},
+		headCase{"# quantity: velocity\n# Acceleration time history", `case:1: quantity: "quantity: velocity" may say velocity series, not acceleration: if the numbers are accelerations, correct the line, else leave the file out`}, headCase{"# quantity: velocity\n# unit: gal", `case:1: quantity: "quantity: velocity" may say velocity series, not acceleration: if the numbers are accelerations, correct the line, else leave the file out`},
 		headCase{"# quantity: spectral acceleration", "skip: " + spectraReason}, headCase{"# quantity: velocity", "skip: " + velocity},
+		headCase{"# recorded velocity", "skip: " + velocity}, headCase{"# Response spectrum, damping: 5%", "skip: " + spectraReason},
 	), column(20, "%.4f"), forAll)
 }
 
