@@ -82,9 +82,8 @@ type work struct {
 	keepBefore, keepAfter int
 	// noise is how far the motion stands out, by frequency, once a step has asked, until a
 	// step changes motion and noise otherwise than filters do, which change both alike.
-	noise    ratios
-	hasNoise bool
-	asked    bool
+	noise ratios
+	asked bool
 	// onsetAt is the onset, once the step at hand has asked for it.
 	onsetAt  int
 	hasOnset bool
@@ -107,16 +106,13 @@ func (w *work) cornerOf(s Step, choose func(ratios, NoiseRule) float64) float64 
 		return s.CornerHz
 	}
 	w.ask()
-	if !w.hasNoise {
-		return s.ByNoise.ElseHz
-	}
 	return choose(w.noise, *s.ByNoise)
 }
 
 // ask looks at the noise unless that of the motion at hand is known.
 func (w *work) ask() {
 	if !w.asked {
-		w.noise, w.hasNoise = w.ratios()
+		w.noise = w.ratios()
 		w.asked = true
 	}
 }

@@ -278,9 +278,9 @@ func TestOversample(t *testing.T) {
 	}
 }
 
-// Too little before the motion to tell noise by leaves the corner that the rule names.
+// Nothing before the motion or behind it to tell noise by leaves the corner that the rule names.
 func TestNoNoise(t *testing.T) {
-	x := recorded(4, motion(4, 0.01, 20, 0.4, 12))[2000:]
+	x := recorded(4, motion(4, 0.01, 20, 0.4, 12))[2000:2600]
 	got, err := Standard().Apply(raw(x, 0.01))
 	if err != nil || got.LowCutHz != 0.1 || !math.IsNaN(got.HighCutHz) {
 		t.Errorf("%g to %g Hz, %v", got.LowCutHz, got.HighCutHz, err)

@@ -7,10 +7,10 @@ import (
 )
 
 const (
-	// guardS is the time before the onset in s that counts neither as noise nor as
-	// motion: pickers are late.
+	// guardS is the time before the arrival in s that counts neither as noise nor as
+	// motion, since pickers are late; half of what precedes it where that is less.
 	guardS = 0.5
-	// leastNoiseS is the shortest noise in s that is taken for such.
+	// leastNoiseS is the shortest noise in s that is enough.
 	leastNoiseS = 2.0
 	// endFactor is how many times the power of the noise the motion has up to its end:
 	// twice the amplitude (common practice).
@@ -25,7 +25,7 @@ const (
 func (w *work) onset() int {
 	if !w.hasOnset && w.tapered < len(w.recorded()) {
 		arrival := signal.ArrivalOver(w.recorded()[w.tapered:], w.StepS, signal.RoundingDeviation(w.resolution))
-		w.onsetAt = w.tapered + max(0, arrival-int(math.Ceil(guardS/w.StepS)))
+		w.onsetAt = w.tapered + arrival - min(arrival-arrival/2, int(math.Ceil(guardS/w.StepS)))
 		w.hasOnset = true
 	}
 	return w.onsetAt

@@ -168,15 +168,8 @@ func TestNoJumpIsInvented(t *testing.T) {
 			clean := earthquake(magnitude, 50e3, 20, stepS, seed)
 			for _, deviation := range []float64{0, 0.001, 0.01} {
 				x := recorded(seed, clean)
-				random := rand.New(rand.NewPCG(seed, 79))
-				var held [12]float64 // pink noise, of up to 40 s
-				for i := range x {
-					for k := range held {
-						if i%(1<<k) == 0 {
-							held[k] = random.NormFloat64()
-						}
-						x[i] += deviation / math.Sqrt(float64(len(held))) * held[k]
-					}
+				for i, v := range pink(seed, len(x)) {
+					x[i] += deviation * v
 				}
 				cut := signal.EndOf(x, stepS, restFrom) + int(25/stepS)
 				for name, x := range map[string][]float64{"whole": x, "cut": x[:min(len(x), cut)], "short noise": x[900:]} {
@@ -187,6 +180,22 @@ func TestNoJumpIsInvented(t *testing.T) {
 			}
 		}
 	}
+}
+
+// pink is noise of a standard deviation of 1, at steps of 0.01 s of up to 40 s.
+func pink(seed uint64, n int) []float64 {
+	random := rand.New(rand.NewPCG(seed, 79))
+	var held [12]float64
+	x := make([]float64, n)
+	for i := range x {
+		for k := range held {
+			if i%(1<<k) == 0 {
+				held[k] = random.NormFloat64()
+			}
+			x[i] += held[k] / math.Sqrt(float64(len(held)))
+		}
+	}
+	return x
 }
 
 // after is size from a time on.

@@ -65,8 +65,9 @@ type Step struct {
 // it: the ratio of their smoothed Fourier amplitudes, each for its length, is at least
 // Ratio from the corner to the frequency where the motion is strongest. The corner stays
 // within LeastHz and MostHz, and a low one is none below the lowest frequency of which
-// noise and motion hold a cycle. It is ElseHz where there is too little before the onset
-// to compare with; 0 stands for no filter.
+// noise and motion hold a cycle. Where there is too little before the onset to compare with,
+// a low corner is that by what there is of it and by what follows the motion, but none below
+// ElseHz; it is ElseHz where neither tells anything, as a high one is. 0 stands for no filter.
 type NoiseRule struct {
 	Ratio   float64 `json:"ratio" toml:"ratio"`
 	LeastHz float64 `json:"least_hz" toml:"least_hz"`

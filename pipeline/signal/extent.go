@@ -1,6 +1,9 @@
 package signal
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // EndAbove is the sample k > from up to which a motion x stands out of its noise most,
 // where
@@ -28,6 +31,20 @@ func EndAbove(x []float64, stepS float64, quiet, from int, floor, factor float64
 		}
 	}
 	return end
+}
+
+// QuietestPower is the mean square of the second of x that has the least, slow changes left
+// out as for Arrival; 0 where x has none.
+func QuietestPower(x []float64, stepS float64) float64 {
+	if len(x) == 0 {
+		return 0
+	}
+	seconds := RootMeanSquares(quick(x, stepS), max(1, int(math.Round(1/stepS))))
+	if len(seconds) == 0 {
+		return 0
+	}
+	least := slices.Min(seconds)
+	return least * least
 }
 
 // Resolution is the smallest step between neighbouring samples that is not 0: a

@@ -1,6 +1,7 @@
 package signal
 
 import (
+	"math"
 	"math/rand/v2"
 	"testing"
 )
@@ -36,5 +37,24 @@ func TestResolution(t *testing.T) {
 		if got := Resolution(test.x); got != test.want {
 			t.Errorf("Resolution(%v) = %g, want %g", test.x, got, test.want)
 		}
+	}
+}
+
+// The quietest second tells the noise whatever drift there is; less than a second tells none.
+func TestQuietestPower(t *testing.T) {
+	const stepS, deviation = 0.01, 0.02
+	random := rand.New(rand.NewPCG(1, 5))
+	x := make([]float64, 4000)
+	for i := range x {
+		x[i] = 3 + math.Sin(float64(i)/2000) + deviation*random.NormFloat64()
+		if i > 1000 && i < 3000 {
+			x[i] += random.NormFloat64()
+		}
+	}
+	if got := QuietestPower(x, stepS) / (deviation * deviation); !(got > 0.4 && got < 1.1) {
+		t.Errorf("%.3g of the noise", got)
+	}
+	if got := QuietestPower(x[:99], stepS); got != 0 {
+		t.Errorf("%g of less than a second", got)
 	}
 }
