@@ -24,7 +24,8 @@ const (
 
 // takeOffset takes off a step of the baseline of at least the step's share of PGA, where
 // there is one, and notes where the velocity behind the motion is not that before it and no
-// such step is the cause: several steps, one outside the motion, or a slow one.
+// such step is the cause: several steps, one outside the motion, or a slow one. Where a
+// polynomial of as many coefficients fits better the level drifts.
 func (w *work) takeOffset(s Step) {
 	x := w.recorded()
 	_, quiet := w.quiet()
@@ -42,7 +43,7 @@ func (w *work) takeOffset(s Step) {
 		for i := int(math.Ceil(o.TimeS / w.StepS)); i < len(x); i++ {
 			x[i] -= o.Size
 		}
-	case o.Velocity >= jumpShare*o.Peak:
+	case o.OverSmooth >= 1 && o.Velocity >= jumpShare*o.Peak:
 		share := o.Velocity / o.Peak
 		w.Exceeded = append(w.Exceeded, Excess{FlagBaselineStep, share, jumpShare, fmt.Sprintf("the level changes in the motion: the velocity behind it is off by up to %.2g of PGV", share)})
 	}

@@ -9,6 +9,9 @@ type Offset struct {
 	// Gain is by what factor the step lessens the squares of the velocity, where the ground
 	// is at rest, that a parabola alone would leave.
 	Gain float64
+	// OverSmooth is by what factor it does so beside a polynomial of as many coefficients, which
+	// changes slowly.
+	OverSmooth float64
 	// Velocity is the greatest one that the step makes where the ground is at rest behind the
 	// motion, and Peak that of the motion beside the parabola's, both in units of acceleration
 	// times s.
@@ -40,19 +43,22 @@ func FindOffset(x []float64, stepS float64, quiet, rest int) (o Offset, ok bool)
 		return o, false
 	}
 	v := Integrate(nil, x, stepS)
-	var f fit
+	var f, slow fit
 	for i, y := range v {
 		if i < quiet || i >= rest {
-			f.add(termsAt(i, n, i >= rest), y)
+			terms := termsAt(i, n, i >= rest)
+			f.add(terms, y)
+			slow.add(slowTerms(terms), y)
 		}
 	}
 	with, leftWith, okWith := f.solve(offsetTerms)
 	_, left, okWithout := f.solve(offsetTerms - 2)
-	if !okWith || !okWithout || with[3] == 0 {
+	_, leftSlow, okSlow := slow.solve(offsetTerms)
+	if !okWith || !okWithout || !okSlow || with[3] == 0 {
 		return o, false
 	}
 	lengthS := float64(n) * stepS
-	o = Offset{Size: with[3] / lengthS, TimeS: with[4] / with[3] * lengthS, Gain: left / leftWith}
+	o = Offset{Size: with[3] / lengthS, TimeS: with[4] / with[3] * lengthS, Gain: left / leftWith, OverSmooth: leftSlow / leftWith}
 	o.Velocity = max(math.Abs(float64(with[3]*termsAt(rest, n, true)[3])-with[4]), math.Abs(float64(with[3]*termsAt(n-1, n, true)[3])-with[4]))
 	for i := quiet; i < rest; i++ {
 		y := v[i]
@@ -72,6 +78,13 @@ func termsAt(i, n int, behind bool) (terms [offsetTerms]float64) {
 	if behind {
 		terms[3], terms[4] = t, -1
 	}
+	return terms
+}
+
+// slowTerms are those of a polynomial for those with a step.
+func slowTerms(terms [offsetTerms]float64) [offsetTerms]float64 {
+	t, cubed := terms[0], terms[2]
+	terms[3], terms[4] = float64(cubed*t), float64(cubed*terms[1])
 	return terms
 }
 

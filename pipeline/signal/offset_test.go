@@ -26,12 +26,19 @@ func TestFindOffset(t *testing.T) {
 	for _, size := range []float64{-0.5, 1e-3} {
 		o, ok := FindOffset(invented(size, 17), stepS, quiet, rest)
 		// The trapezoid puts the step half a sample before its first one.
-		if !ok || math.Abs(o.Size/size-1) > 1e-3 || math.Abs(o.TimeS-17+stepS/2) > 1e-3*stepS/math.Abs(size) || !(o.Gain > 1e3) {
+		if !ok || math.Abs(o.Size/size-1) > 1e-3 || math.Abs(o.TimeS-17+stepS/2) > 1e-3*stepS/math.Abs(size) || !(o.Gain > 1e3) || !(o.OverSmooth > 10) {
 			t.Errorf("step %g: %+v, %v", size, o, ok)
 		}
 	}
 	if o, ok := FindOffset(invented(0, 17), stepS, quiet, rest); ok && o.Gain > 10 {
 		t.Errorf("no step: %+v", o)
+	}
+	swinging := invented(0, 17)
+	for i := range swinging {
+		swinging[i] += 0.01 * math.Sin(2*math.Pi*float64(i)/n)
+	}
+	if o, _ := FindOffset(swinging, stepS, quiet, rest); !(o.OverSmooth < 1) {
+		t.Errorf("a swing as long as the record: %+v", o)
 	}
 	for _, atS := range []float64{5, 30} {
 		if o, ok := FindOffset(invented(0.5, atS), stepS, quiet, rest); ok && o.Gain > 10 {
