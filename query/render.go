@@ -126,6 +126,35 @@ func printable(s string) string {
 	}, s)
 }
 
+// answer is what can be written in every format.
+type answer struct {
+	what   string // for errors
+	table  func() []byte
+	csv    func() []byte
+	object func() object
+}
+
+// write renders the answer. The error is a UsageError for another format and otherwise one
+// of w.
+func (a answer) write(w io.Writer, format Format) error {
+	var text []byte
+	var err error
+	switch format {
+	case FormatTable, "":
+		text = a.table()
+	case FormatCSV:
+		text = a.csv()
+	case FormatJSON:
+		text, err = jsonText(a.object())
+	default:
+		_, err = ParseFormat(string(format))
+	}
+	if err != nil {
+		return err
+	}
+	return writeText(w, a.what, text)
+}
+
 func writeText(w io.Writer, what string, text []byte) error {
 	if _, err := w.Write(text); err != nil {
 		return fmt.Errorf("write %s: %w", what, err)

@@ -8,22 +8,7 @@ import (
 // Write renders the answer as a table, or as CSV or JSON, which are in SI whatever the
 // units. The error is a UsageError for another format and otherwise one of w.
 func (a *DemandAnswer) Write(w io.Writer, format Format, units Units) error {
-	var text []byte
-	var err error
-	switch format {
-	case FormatTable, "":
-		text = a.table(units)
-	case FormatCSV:
-		text = a.csv()
-	case FormatJSON:
-		text, err = jsonText(a.object())
-	default:
-		_, err = ParseFormat(string(format))
-	}
-	if err != nil {
-		return err
-	}
-	return writeText(w, "demand", text)
+	return answer{"demand", func() []byte { return a.table(units) }, a.csv, a.object}.write(w, format)
 }
 
 // Remarks returns the selection's remarks and the caution.

@@ -11,22 +11,7 @@ import (
 // everything, which are in SI whatever the units. The error is a UsageError for another
 // format and otherwise one of w.
 func (a *PortfolioAnswer) Write(w io.Writer, format Format, units Units) error {
-	var text []byte
-	var err error
-	switch format {
-	case FormatTable, "":
-		text = a.table(units)
-	case FormatCSV:
-		text = a.csv()
-	case FormatJSON:
-		text, err = jsonText(a.object())
-	default:
-		_, err = ParseFormat(string(format))
-	}
-	if err != nil {
-		return err
-	}
-	return writeText(w, "demands", text)
+	return answer{"demands", func() []byte { return a.table(units) }, a.csv, a.object}.write(w, format)
 }
 
 // Remarks returns the selection's remarks, how far interpolated ordinates are off, and the

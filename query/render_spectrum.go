@@ -47,22 +47,7 @@ func (m Measure) title() string {
 // Write renders the answer. The error is a UsageError for an unknown format and
 // otherwise one of w.
 func (a *SpectrumAnswer) Write(w io.Writer, format Format, units Units) error {
-	var text []byte
-	var err error
-	switch format {
-	case FormatTable, "":
-		text = a.table(units)
-	case FormatCSV:
-		text = a.csv(units)
-	case FormatJSON:
-		text, err = jsonText(a.object(units))
-	default:
-		_, err = ParseFormat(string(format))
-	}
-	if err != nil {
-		return err
-	}
-	return writeText(w, "spectrum", text)
+	return answer{"spectrum", func() []byte { return a.table(units) }, func() []byte { return a.csv(units) }, func() object { return a.object(units) }}.write(w, format)
 }
 
 // Remarks returns the selection's remarks and the caution, for where they
