@@ -43,19 +43,14 @@ type against struct {
 	above       float64 // share of the sample's weight that is above value
 }
 
-// against compares a sorted sample; weights is nil where all are equal.
-func (r *reducer) against(out *Reduction, sorted, weights, scratch []float64, value float64) *against {
+// against compares the values last reduced.
+func (r *reducer) against(out *Reduction, value float64) *against {
 	a := &against{value: value, median: math.NaN(), p84: math.NaN(), above: math.NaN()}
-	if !isDefined(value) || len(sorted) == 0 {
+	if !isDefined(value) || len(r.reduced) == 0 {
 		return a
 	}
 	percents := []float64{50, 84}
-	var found []float64
-	if weights == nil {
-		found = stats.Percentiles(nil, sorted, percents)
-	} else {
-		found = stats.WeightedPercentiles(nil, scratch, sorted, weights, percents)
-	}
+	found := r.percentiles(percents)
 	for i, into := range []*float64{&a.median, &a.p84} {
 		if stats.Supports(out.Effective, percents[i]) {
 			*into = found[i] / value
@@ -87,12 +82,7 @@ func atMost(sorted []float64, x float64) int {
 
 func designStatistics() []statistic {
 	of := func(part func(*against) float64) func(*Reduction) float64 {
-		return func(r *Reduction) float64 {
-			if r.extra.against == nil {
-				return math.NaN()
-			}
-			return part(r.extra.against)
-		}
+		return ofExtra(func(e *extraFigures) *against { return e.against }, part)
 	}
 	return []statistic{
 		{title: "design", csv: "design", path: []string{"design", "value"}, hasUnit: true, of: of(func(a *against) float64 { return a.value })},

@@ -47,9 +47,8 @@ func clustersByEvent(motions []motion) []int {
 // bootstrap takes values in the order of the sample.
 func (r *reducer) bootstrap(out *Reduction, values []float64) *resampled {
 	order := slices.DeleteFunc(upTo(len(values)), func(k int) bool { return math.IsNaN(values[k]) })
-	all := clustersByEvent(r.motions)
 	slices.SortStableFunc(order, func(i, j int) int {
-		return cmp.Or(cmp.Compare(values[i], values[j]), cmp.Compare(all[r.at[i]], all[r.at[j]]))
+		return cmp.Or(cmp.Compare(values[i], values[j]), cmp.Compare(r.events[r.at[i]], r.events[r.at[j]]))
 	})
 	sorted, clusters := make([]float64, len(order)), make([]int, len(order))
 	var weights []float64
@@ -61,7 +60,7 @@ func (r *reducer) bootstrap(out *Reduction, values []float64) *resampled {
 		}
 	}
 	for i, k := range order {
-		sorted[i], clusters[i] = values[k], all[r.at[k]]
+		sorted[i], clusters[i] = values[k], r.events[r.at[k]]
 	}
 	return r.resample(out, sorted, weights, clusters)
 }
@@ -102,12 +101,7 @@ func bootstrapStatistics(percents []float64) []statistic {
 	add := func(key string, path []string, of func(*resampled) interval) {
 		at := func(end string) []string { return append(append([]string{"bootstrap"}, path...), end) }
 		part := func(end func(interval) float64) func(*Reduction) float64 {
-			return func(r *Reduction) float64 {
-				if r.extra.resampled == nil {
-					return math.NaN()
-				}
-				return end(of(r.extra.resampled))
-			}
+			return ofExtra(func(e *extraFigures) *resampled { return e.resampled }, func(x *resampled) float64 { return end(of(x)) })
 		}
 		out = append(out,
 			statistic{title: "boot " + key + " low", csv: "bootstrap_" + key + "_low", path: at("low"), hasUnit: true, of: part(func(v interval) float64 { return v.low })},

@@ -137,7 +137,7 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 	picked.report.noteMethod(q.Method)
 	picked.report.Notes = append(picked.report.Notes, append(q.Extras.notes(&picked.report), q.Extras.dampingNote(q.Structure.Damping)...)...)
 	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By, Extras: q.Extras}
-	whole := picked.sample()
+	whole := picked.sample(q.Extras)
 	answer.Quantities, answer.Band = q.reduceBoth(whole, loaded, at)
 	for _, g := range q.By.part(picked.motions) {
 		quantities, overBand := q.reduceBoth(whole.of(&g), loaded, at)

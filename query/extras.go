@@ -4,7 +4,6 @@ import (
 	"cmp"
 	"fmt"
 	"math"
-	"slices"
 	"strings"
 
 	"gonum.org/v1/gonum/stat/distuv"
@@ -103,21 +102,31 @@ type extraFigures struct {
 	resampled *resampled
 }
 
+// ofExtra is a figure of one of them, NaN where that was not asked for.
+func ofExtra[T any](extra func(*extraFigures) *T, part func(*T) float64) func(*Reduction) float64 {
+	return func(r *Reduction) float64 {
+		if x := extra(&r.extra); x != nil {
+			return part(x)
+		}
+		return math.NaN()
+	}
+}
+
 // interval holds a percentile of what the sample is drawn from with at least the level of
 // confidence. Both are NaN where the sample is too small for that, or weighted.
 type interval struct{ low, high float64 }
 
 // intervals are the distribution-free ones of each percentile, by order statistics. They
 // take motions as independent.
-func (r *reducer) intervals(sorted []float64) []interval {
+func (r *reducer) intervals() []interval {
 	out := make([]interval, len(r.percents))
 	for i, percent := range r.percents {
 		out[i] = interval{math.NaN(), math.NaN()}
 		if r.clusters != nil {
 			continue
 		}
-		if k := r.ranksOf(len(sorted), percent); k.ok {
-			out[i] = interval{sorted[k.low], sorted[k.high]}
+		if k := r.ranksOf(len(r.reduced), percent); k.ok {
+			out[i] = interval{r.reduced[k.low], r.reduced[k.high]}
 		}
 	}
 	return out
@@ -154,7 +163,7 @@ type lognormal struct {
 	statistic, p float64
 }
 
-func (r *reducer) lognormal(out *Reduction, sorted, scratch []float64) *lognormal {
+func (r *reducer) lognormal(out *Reduction) *lognormal {
 	l := &lognormal{percentiles: make([]float64, len(r.percents)), statistic: math.NaN(), p: math.NaN()}
 	for i, percent := range r.percents {
 		l.percentiles[i] = math.NaN()
@@ -164,7 +173,7 @@ func (r *reducer) lognormal(out *Reduction, sorted, scratch []float64) *lognorma
 		}
 	}
 	if r.clusters == nil {
-		l.statistic, l.p = stats.AndersonDarling(scratch, sorted)
+		l.statistic, l.p = stats.AndersonDarling(r.scratch[:len(r.reduced)], r.reduced)
 	}
 	return l
 }
@@ -193,12 +202,12 @@ func (e Extras) statistics(percents []float64) (out []statistic) {
 
 func intervalStatistics(i int, key string) []statistic {
 	of := func(part func(*interval) float64) func(*Reduction) float64 {
-		return func(r *Reduction) float64 {
-			if r.extra.intervals == nil {
-				return math.NaN()
+		return ofExtra(func(e *extraFigures) *interval {
+			if e.intervals == nil {
+				return nil
 			}
-			return part(&r.extra.intervals[i])
-		}
+			return &e.intervals[i]
+		}, part)
 	}
 	return []statistic{
 		{title: "p" + key + " low", csv: "p" + key + "_low", path: []string{"intervals", key, "low"}, hasUnit: true, of: of(func(v *interval) float64 { return v.low }), isPercentile: true},
@@ -208,12 +217,7 @@ func intervalStatistics(i int, key string) []statistic {
 
 func lognormalStatistics(percents []float64) []statistic {
 	of := func(part func(*lognormal) float64) func(*Reduction) float64 {
-		return func(r *Reduction) float64 {
-			if r.extra.lognormal == nil {
-				return math.NaN()
-			}
-			return part(r.extra.lognormal)
-		}
+		return ofExtra(func(e *extraFigures) *lognormal { return e.lognormal }, part)
 	}
 	var out []statistic
 	for i, percent := range percents {
@@ -266,5 +270,5 @@ func (e Extras) notes(s *SelectionReport) []string {
 		}
 		out = append(out, e.Design.Notes()...)
 	}
-	return slices.Clip(out)
+	return out
 }

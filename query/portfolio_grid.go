@@ -122,15 +122,13 @@ func (w *portfolioWork) gridError(ctx context.Context) (*GridError, error) {
 	if w.grid == nil {
 		return nil, nil
 	}
-	var off []spectrum.Oscillator
+	var wanted, off []spectrum.Oscillator
 	for _, p := range w.plans {
-		for _, o := range p.wanted {
-			if !slices.Contains(w.grid.periods, o.PeriodS) || !slices.Contains(w.grid.dampings, o.Damping) {
-				off = append(off, o)
-			}
-		}
+		wanted = append(wanted, p.wanted...)
 	}
-	off = evenly(off, errorSample)
+	for _, i := range evenly(w.source.find(wanted).missing, errorSample) {
+		off = append(off, wanted[i])
+	}
 	which := slices.DeleteFunc(upTo(len(w.picked.motions)), func(i int) bool { _, isOut := w.unfit[i]; return isOut })
 	which = evenly(which, errorSample)
 	if len(off) == 0 || len(which) == 0 {

@@ -317,7 +317,7 @@ func (w *portfolioWork) load(ctx context.Context, oscillators []spectrum.Oscilla
 // reduce answers for the structures of plans from … to-1, side by side.
 func (w *portfolioWork) reduce(ctx context.Context, rows []PortfolioRow, o *ordinates, from, to int) error {
 	workers := min(maxWorkers(), to-from)
-	sample := w.picked.sample()
+	sample := w.picked.sample(w.question.Extras)
 	return inParallel(ctx, workers, func(ctx context.Context, first int) error {
 		r := newReducer(sample, w.question.Percentiles, w.question.Extras)
 		for i := from + first; i < to && ctx.Err() == nil; i += workers {

@@ -37,13 +37,17 @@ func DefaultPercentiles() []float64 { return []float64{16, 50, 84} }
 type sample struct {
 	motions  []motion
 	clusters []int // what is balanced, by position in motions; nil: nothing
-	events   []int // by position in motions, -1 where unknown
+	events   []int // the same of events, where a figure needs them; see clustersByEvent
 	at       []int
 }
 
-// sample is all motions.
-func (p *picked) sample() sample {
-	return sample{p.motions, p.report.Balance.clusters(p.motions), eventsOf(p.motions), upTo(len(p.motions))}
+// sample is all motions, with what the figures need.
+func (p *picked) sample(e Extras) sample {
+	s := sample{motions: p.motions, clusters: p.report.Balance.clusters(p.motions), at: upTo(len(p.motions))}
+	if e.Spread || !e.Bootstrap.isNone() {
+		s.events = clustersByEvent(p.motions)
+	}
+	return s
 }
 
 // of is the sample's motions of a group of them all.
@@ -89,13 +93,12 @@ func (r *reducer) reduce(values []float64, level float64) Reduction {
 	if n > 0 {
 		out.Min, out.Max = sorted[0], sorted[n-1]
 	}
+	out.Percentiles = r.percentiles(r.percents)
 	if weights == nil {
 		out.Effective, out.Mean = float64(n), stats.Mean(sorted)
-		out.Percentiles = stats.Percentiles(nil, sorted, r.percents)
 		out.LogMean, out.LogStd = stats.LogMoments(scratch, sorted)
 	} else {
 		out.Effective, out.Mean = stats.EffectiveNumber(weights), stats.WeightedMean(sorted, weights)
-		out.Percentiles = stats.WeightedPercentiles(nil, scratch, sorted, weights, r.percents)
 		out.LogMean, out.LogStd = stats.WeightedLogMoments(scratch, sorted, weights)
 	}
 	for i, percent := range r.percents {
@@ -108,7 +111,7 @@ func (r *reducer) reduce(values []float64, level float64) Reduction {
 		out.Governing, out.GoverningComponent = m.record(), m.role
 	}
 	if r.extras.isAny() {
-		r.addExtras(&out, values, sorted, weights, level)
+		r.addExtras(&out, values, level)
 	}
 	return out
 }
@@ -138,13 +141,20 @@ func (r *reducer) sort(values []float64) (sorted, weights []float64) {
 	return sorted, weights
 }
 
-func (r *reducer) addExtras(out *Reduction, values, sorted, weights []float64, level float64) {
-	scratch := r.scratch[:len(sorted)]
+// percentiles are those of the values last reduced.
+func (r *reducer) percentiles(percents []float64) []float64 {
+	if r.reducedWeights == nil {
+		return stats.Percentiles(nil, r.reduced, percents)
+	}
+	return stats.WeightedPercentiles(nil, r.scratch[:len(r.reduced)], r.reduced, r.reducedWeights, percents)
+}
+
+func (r *reducer) addExtras(out *Reduction, values []float64, level float64) {
 	if r.extras.Intervals {
-		out.extra.intervals = r.intervals(sorted)
+		out.extra.intervals = r.intervals()
 	}
 	if r.extras.Lognormal {
-		out.extra.lognormal = r.lognormal(out, sorted, scratch)
+		out.extra.lognormal = r.lognormal(out)
 	}
 	if r.extras.Spread {
 		out.extra.spread = r.spread(values)
@@ -153,7 +163,7 @@ func (r *reducer) addExtras(out *Reduction, values, sorted, weights []float64, l
 		out.extra.resampled = r.bootstrap(out, values)
 	}
 	if r.extras.Design != nil {
-		out.extra.against = r.against(out, sorted, weights, scratch, level)
+		out.extra.against = r.against(out, level)
 	}
 }
 

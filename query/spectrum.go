@@ -157,7 +157,7 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
 		PeriodsS: periods, By: q.By, Extras: q.Extras,
 	}
-	whole := picked.sample()
+	whole := picked.sample(q.Extras)
 	if answer.Reductions, err = q.reduceAll(ctx, loaded, whole); err != nil {
 		return nil, err
 	}

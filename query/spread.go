@@ -1,8 +1,6 @@
 package query
 
 import (
-	"math"
-
 	"swaybook/query/mixed"
 	"swaybook/query/stats"
 )
@@ -15,28 +13,13 @@ type spread struct {
 	events          int
 }
 
-// eventsOf number the events of motions, by position, -1 where unknown.
-func eventsOf(motions []motion) []int {
-	out := numbered(motions, func(m *motion) string {
-		if e := m.members[0].Record.Event; e != nil {
-			return e.Code
-		}
-		return ""
-	})
-	for i := range motions {
-		if motions[i].members[0].Record.Event == nil {
-			out[i] = -1
-		}
-	}
-	return out
-}
-
 // spread takes values in the order of the sample; those of unknown events do not count.
 func (r *reducer) spread(values []float64) *spread {
 	r.logs, r.groups = r.logs[:0], r.groups[:0]
 	for k, x := range values {
-		if event := r.events[r.at[k]]; event >= 0 && x > 0 { // NaN is not
-			r.logs, r.groups = append(r.logs, stats.Log(x)), append(r.groups, event)
+		at := r.at[k]
+		if r.motions[at].members[0].Record.Event != nil && x > 0 { // NaN is not
+			r.logs, r.groups = append(r.logs, stats.Log(x)), append(r.groups, r.events[at])
 		}
 	}
 	fit := r.fitter.Fit(r.logs, r.groups, mixed.REML)
@@ -45,12 +28,7 @@ func (r *reducer) spread(values []float64) *spread {
 
 func spreadStatistics() []statistic {
 	of := func(part func(*spread) float64) func(*Reduction) float64 {
-		return func(r *Reduction) float64 {
-			if r.extra.spread == nil {
-				return math.NaN()
-			}
-			return part(r.extra.spread)
-		}
+		return ofExtra(func(e *extraFigures) *spread { return e.spread }, part)
 	}
 	return []statistic{
 		{title: "events", csv: "spread_events", path: []string{"spread", "events"}, of: of(func(s *spread) float64 { return float64(s.events) }), text: wholeNumber},
