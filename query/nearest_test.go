@@ -17,15 +17,12 @@ import (
 // meridianRecords are of stations 0.1°, 0.2° and 1° north of 40° N, 20° E, of the latest
 // event, one there of an older one, and one of no known place.
 func meridianRecords() []inventedRecord {
-	at := func(code string, latitude float64) *db.Station {
-		return &db.Station{Network: "ZX", Code: code, LatitudeDeg: &latitude, LongitudeDeg: ptr(20.0)}
-	}
 	return []inventedRecord{
-		{code: "N1", siting: "free-field", event: quakeA, station: at("P", 40.1), components: pair(0.02, 0.02)},
-		{code: "N2", siting: "free-field", event: quakeA, station: at("Q", 40.2), components: pair(0.01, 0.01)},
-		{code: "N3", siting: "free-field", event: quakeA, station: at("R", 41), components: pair(0.64, 0.64)},
-		{code: "N4", siting: "free-field", event: quakeB, station: at("S", 40), components: pair(9, 9)},
-		{code: "N6", siting: "free-field", event: quakeA, station: at("P", 40.1), components: pair(5, 5)}, // a second instrument
+		{code: "N1", siting: "free-field", event: quakeA, station: stationAt("P", 40.1), components: pair(0.02, 0.02)},
+		{code: "N2", siting: "free-field", event: quakeA, station: stationAt("Q", 40.2), components: pair(0.01, 0.01)},
+		{code: "N3", siting: "free-field", event: quakeA, station: stationAt("R", 41), components: pair(0.64, 0.64)},
+		{code: "N4", siting: "free-field", event: quakeB, station: stationAt("S", 40), components: pair(9, 9)},
+		{code: "N6", siting: "free-field", event: quakeA, station: stationAt("P", 40.1), components: pair(5, 5)}, // a second instrument
 		{code: "N5", siting: "free-field", event: quakeA, station: &db.Station{Network: "ZX", Code: "T"}, components: pair(9, 9)},
 	}
 }

@@ -10,19 +10,21 @@ import (
 	"swaybook/db"
 )
 
+// stationAt is on the meridian of 20° E.
+func stationAt(code string, latitude float64) *db.Station {
+	return &db.Station{Network: "ZX", Code: code, LatitudeDeg: &latitude, LongitudeDeg: ptr(20.0)}
+}
+
 // scopeRecords are of stations along a meridian and of events of known and unknown times.
 func scopeRecords() []inventedRecord {
-	at := func(code string, latitude float64) *db.Station {
-		return &db.Station{Network: "ZX", Code: code, LatitudeDeg: &latitude, LongitudeDeg: ptr(20.0)}
-	}
 	nowhere := &db.Station{Network: "ZX", Code: "NOWHERE"}
 	return []inventedRecord{
-		{code: "S1", siting: "free-field", event: quakeB, station: at("P", 40), components: pair(0.01, 0.01)},
-		{code: "S2", siting: "free-field", event: quakeA, station: at("Q", 40.1), components: pair(0.02, 0.02)},
-		{code: "S3", siting: "free-field", event: quakeA, station: at("R", 41), components: pair(0.03, 0.03)},
+		{code: "S1", siting: "free-field", event: quakeB, station: stationAt("P", 40), components: pair(0.01, 0.01)},
+		{code: "S2", siting: "free-field", event: quakeA, station: stationAt("Q", 40.1), components: pair(0.02, 0.02)},
+		{code: "S3", siting: "free-field", event: quakeA, station: stationAt("R", 41), components: pair(0.03, 0.03)},
 		{code: "S4", siting: "free-field", event: quakeA, station: nowhere, components: pair(0.04, 0.04)},
-		{code: "S5", siting: "free-field", event: quakeC, station: at("T", 40), components: pair(0.05, 0.05)},
-		{code: "S6", siting: "free-field", event: quakeC, station: at("U", 40), start: time.Date(2021, 6, 1, 0, 0, 0, 0, time.UTC), components: pair(0.06, 0.06)},
+		{code: "S5", siting: "free-field", event: quakeC, station: stationAt("T", 40), components: pair(0.05, 0.05)},
+		{code: "S6", siting: "free-field", event: quakeC, station: stationAt("U", 40), start: time.Date(2021, 6, 1, 0, 0, 0, 0, time.UTC), components: pair(0.06, 0.06)},
 	}
 }
 

@@ -3,7 +3,6 @@ package main
 import (
 	"context"
 	"errors"
-	"fmt"
 	"io"
 
 	"github.com/urfave/cli/v2"
@@ -16,7 +15,7 @@ import (
 var (
 	described    = []string{"period", "stiffness", "weight", "mass", "height", "damping", "band"} // by the file
 	oneStructure = []string{"by", "resamples", "seed"}
-	statistics   = []string{"balance", "percentiles", "show", "confidence", "design"}
+	ofStatistics = []string{"balance", "percentiles", "show", "confidence", "design"}
 )
 
 // queryPortfolio answers for the structures of a file.
@@ -42,7 +41,7 @@ func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
 		exclude(c, described, "--structures and --%s exclude each other: the file says it of every structure"),
 		exclude(c, oneStructure, "--%s is of one structure, not of --structures"))
 	if c.IsSet("nearest") {
-		err = errors.Join(err, exclude(c, statistics, "--%s is of statistics, not of estimates from the --nearest stations"))
+		err = errors.Join(err, exclude(c, ofStatistics, "--%s is of statistics, not of estimates from the --nearest stations"))
 	}
 	if err != nil {
 		return o, err
@@ -72,24 +71,15 @@ func exclude(c *cli.Context, flags []string, why string) error {
 	return nil
 }
 
-// demands is an answer for many structures.
-type demands interface {
-	Write(w io.Writer, format query.Format, units query.Units) error
-	Remarks() string
-}
-
 func runPortfolio(ctx context.Context, store *db.Store, o portfolioOptions, w, stderr io.Writer) error {
 	answer, err := o.ask(ctx, store)
 	if err != nil {
 		return err
 	}
-	if o.format == query.FormatCSV {
-		fmt.Fprint(stderr, answer.Remarks())
-	}
-	return answer.Write(w, o.format, o.units)
+	return writeAnswer(answer, o.format, o.units, w, stderr)
 }
 
-func (o *portfolioOptions) ask(ctx context.Context, store *db.Store) (demands, error) {
+func (o *portfolioOptions) ask(ctx context.Context, store *db.Store) (statistics, error) {
 	if o.nearest == 0 {
 		return o.question.Ask(ctx, store)
 	}

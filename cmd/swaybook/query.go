@@ -167,15 +167,26 @@ func parseInto[T any](dst *T, c *cli.Context, flag string, parse func(string) (T
 	return err
 }
 
+// statistics is an answer that can be written in units.
+type statistics interface {
+	Write(w io.Writer, format query.Format, units query.Units) error
+	Remarks() string
+}
+
+// writeAnswer writes an answer, and its remarks to people where rows have no room for them.
+func writeAnswer(answer statistics, format query.Format, units query.Units, w, stderr io.Writer) error {
+	if format == query.FormatCSV {
+		fmt.Fprint(stderr, answer.Remarks())
+	}
+	return answer.Write(w, format, units)
+}
+
 func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, stderr io.Writer) error {
 	answer, err := o.question.Ask(ctx, store)
 	if err != nil {
 		return err
 	}
-	if o.format == query.FormatCSV {
-		fmt.Fprint(stderr, answer.Remarks())
-	}
-	return answer.Write(w, o.format, o.units)
+	return writeAnswer(answer, o.format, o.units, w, stderr)
 }
 
 func queryDemandCommand() *cli.Command {
@@ -251,10 +262,7 @@ func runDemand(ctx context.Context, store *db.Store, o demandOptions, w, stderr 
 	if err != nil {
 		return err
 	}
-	if o.format == query.FormatCSV {
-		fmt.Fprint(stderr, answer.Remarks())
-	}
-	return answer.Write(w, o.format, o.units)
+	return writeAnswer(answer, o.format, o.units, w, stderr)
 }
 
 func queryRecordsCommand() *cli.Command {

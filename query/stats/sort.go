@@ -60,14 +60,19 @@ func allPlain(xs []float64) bool {
 	return true
 }
 
-// distribute copies from in the order of the byte at shift. counts, the number
-// of values with each byte, become positions.
-func distribute(to, from []float64, counts *[256]uint32, shift int) {
+// toPositions makes of the numbers of values with each byte the positions of the first.
+func toPositions(counts *[256]uint32) {
 	position := uint32(0)
 	for digit, n := range counts {
 		counts[digit] = position
 		position += n
 	}
+}
+
+// distribute copies from in the order of the byte at shift. counts, the number
+// of values with each byte, become positions.
+func distribute(to, from []float64, counts *[256]uint32, shift int) {
+	toPositions(counts)
 	for _, x := range from {
 		digit := byte(math.Float64bits(x) >> (shift & 63))
 		to[counts[digit]] = x

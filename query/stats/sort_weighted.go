@@ -68,11 +68,7 @@ func sortByDigits(from, to []weighted) []weighted {
 
 // distributeWeighted is distribute for pairs.
 func distributeWeighted(to, from []weighted, counts *[256]uint32, shift int) {
-	position := uint32(0)
-	for digit, n := range counts {
-		counts[digit] = position
-		position += n
-	}
+	toPositions(counts)
 	for _, p := range from {
 		digit := byte(math.Float64bits(p.x) >> (shift & 63))
 		to[counts[digit]] = p
