@@ -62,12 +62,17 @@ func conditionedFindings(m condition.Conditioned, arrivalS float64) []db.Finding
 	for _, e := range m.Exceeded {
 		out = append(out, db.Finding(e))
 	}
-	for _, f := range quality.AssessConditioned(m.Acceleration, m.StepS, onset) {
-		if !slices.ContainsFunc(out, func(g db.Finding) bool { return g.Flag == f.Flag }) {
-			out = append(out, db.Finding(f)) // a step may have found it already
+	return withFound(out, quality.AssessConditioned(m.Acceleration, m.StepS, onset)) // a step may have found it already
+}
+
+// withFound appends what was found, each flag once.
+func withFound(to []db.Finding, found []quality.Finding) []db.Finding {
+	for _, f := range found {
+		if !slices.ContainsFunc(to, func(g db.Finding) bool { return g.Flag == f.Flag }) {
+			to = append(to, db.Finding(f))
 		}
 	}
-	return out
+	return to
 }
 
 func knownOrNil(x float64) *float64 {

@@ -6,7 +6,6 @@ import (
 	"encoding/hex"
 	"errors"
 	"math"
-	"slices"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -229,12 +228,7 @@ func findingsOf(c *ingest.Channel, arrival int) []db.Finding {
 	for _, f := range c.Findings {
 		out = append(out, db.Finding(f))
 	}
-	for _, f := range quality.Assess(c.Acceleration, c.StepS, arrival) {
-		if !slices.ContainsFunc(out, func(g db.Finding) bool { return g.Flag == f.Flag }) {
-			out = append(out, db.Finding(f))
-		}
-	}
-	return out
+	return withFound(out, quality.Assess(c.Acceleration, c.StepS, arrival))
 }
 
 func numberOrNaN(n ingest.Number) float64 {
