@@ -287,14 +287,14 @@ func (s *Snapshot) measures(ctx context.Context, condition string, args []any) (
 type componentRow struct {
 	HeldComponent
 	start, warnings string
-	pga, pgv, pgd   *float64
+	pga, pgv, pgd   sql.NullFloat64
 }
 
-func orNaN(x *float64) float64 {
-	if x == nil {
+func orNaN(x sql.NullFloat64) float64 {
+	if !x.Valid {
 		return math.NaN()
 	}
-	return *x
+	return x.Float64
 }
 
 // columns are what is read of a component, and where it goes. Without details

@@ -79,14 +79,12 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 
 // StoredMotion is what the store holds of a component, still encoded.
 type StoredMotion struct {
-	role              string
+	origin            Origin
 	samples           int
 	digest            string
 	data              []byte // nil where there is none
 	stepS             float64
 	state             string
-	lowCutHz          *float64
-	highCutHz         *float64
 	sd                [][]byte // by damping
 	periods, dampings int
 }
@@ -109,9 +107,12 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 
 // readSeries reads the samples of one component and what goes with them.
 func readSeries(ctx context.Context, q queryer, condition string, args ...any) (m StoredMotion, err error) {
-	err = q.QueryRowContext(ctx, `SELECT c.role, c.samples, coalesce(s.sha256, ''), s.data, c.step_s, c.processing, c.low_cut_hz, c.high_cut_hz
+	o := &m.origin
+	err = q.QueryRowContext(ctx, `SELECT c.record_id, c.role, c.id, c.azimuth_deg, c.low_cut_hz, c.high_cut_hz,
+			c.samples, coalesce(s.sha256, ''), s.data, c.step_s, c.processing
 		FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE `+condition, args...).
-		Scan(&m.role, &m.samples, &m.digest, &m.data, &m.stepS, &m.state, &m.lowCutHz, &m.highCutHz)
+		Scan(&o.recordID, &o.role, &o.componentID, &o.azimuth, &o.lowCutHz, &o.highCutHz,
+			&m.samples, &m.digest, &m.data, &m.stepS, &m.state)
 	if err != nil {
 		return m, fmt.Errorf("read samples: %w", err)
 	}
@@ -143,7 +144,7 @@ func (m StoredMotion) DecodeMotion() (Motion, error) {
 	if err != nil {
 		return Motion{}, m.damaged(err)
 	}
-	return Motion{Acceleration: samples, StepS: m.stepS, State: m.state, LowCutHz: orNaN(m.lowCutHz), HighCutHz: orNaN(m.highCutHz)}, nil
+	return Motion{Acceleration: samples, StepS: m.stepS, State: m.state, LowCutHz: orNaN(m.origin.lowCutHz), HighCutHz: orNaN(m.origin.highCutHz)}, nil
 }
 
 // ErrUnsolved says that a component's spectra have not been computed in a generation.
@@ -154,7 +155,7 @@ var ErrUnsolved = errors.New("spectra not computed")
 // ErrDamaged, and says what is.
 func (m StoredMotion) DecodeSD() ([]float64, error) {
 	if len(m.sd) == 0 {
-		return nil, fmt.Errorf("%s: %w", m.role, ErrUnsolved)
+		return nil, fmt.Errorf("%s: %w", m.origin.role, ErrUnsolved)
 	}
 	if len(m.sd) != m.dampings {
 		return nil, m.damaged(fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings))
@@ -169,5 +170,5 @@ func (m StoredMotion) DecodeSD() ([]float64, error) {
 }
 
 func (m StoredMotion) damaged(err error) error {
-	return fmt.Errorf("%w: %s: %w", ErrDamaged, m.role, err)
+	return fmt.Errorf("%w: %s: %w", ErrDamaged, m.origin.role, err)
 }

@@ -11,7 +11,9 @@ import (
 // Snapshot is what a reader sees: one state of the store, whatever is written
 // meanwhile.
 type Snapshot struct {
-	tx *sql.Tx
+	tx       *sql.Tx
+	store    *Store
+	reserved []OffGridBlock // by ReserveOffGrid
 	// Generation is the published one.
 	Generation Generation
 }
@@ -33,7 +35,7 @@ func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
 	if !ok {
 		return ErrEmpty
 	}
-	return f(&Snapshot{tx: tx, Generation: g})
+	return f(&Snapshot{tx: tx, store: s, Generation: g})
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
@@ -152,14 +154,16 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 	return out, nil
 }
 
-// Motion returns a component's motion, its samples checked against their digest. The
-// error wraps ErrDamaged where these cannot be had.
-func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, error) {
+// Motion returns a component's motion, its samples checked against their digest, and
+// what else decides what is computed of it. The error wraps ErrDamaged where the samples
+// cannot be had.
+func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, Origin, error) {
 	m, err := readSeries(ctx, s.tx, `c.record_id = ? AND c.role = ?`, recordID, role)
 	if err != nil {
-		return Motion{}, err
+		return Motion{}, Origin{}, err
 	}
-	return m.DecodeMotion()
+	motion, err := m.DecodeMotion()
+	return motion, m.origin, err
 }
 
 // Rejections returns what could not be stored, and what is stored and could not be

@@ -10,6 +10,7 @@ import (
 	"os"
 	"path/filepath"
 	"strings"
+	"sync"
 	"time"
 
 	"modernc.org/sqlite"
@@ -21,12 +22,20 @@ import (
 // slow disk.
 const busyTimeoutMS = 30000
 
+// asideTimeoutMS is how long a writer waits that can as well not write: several batches
+// of another process, and no longer than people do.
+const asideTimeoutMS = 5000
+
 // Store is an open store. It is safe for concurrent use; writes are one at a
 // time.
 type Store struct {
 	path  string
 	write *sql.DB // nil in a store opened for reading
 	read  *sql.DB
+	aside *sql.DB // keeps what questions computed; nil where that is not possible
+
+	mutex  sync.Mutex
+	unkept error // the first by which something was not kept
 }
 
 // Create opens the store at path for reading and writing, makes it where there
@@ -53,11 +62,13 @@ func Open(ctx context.Context, path, solver string) (*Store, error) {
 
 // Close releases the store.
 func (s *Store) Close() error {
-	var errWrite error
-	if s.write != nil {
-		errWrite = s.write.Close()
+	var errs []error
+	for _, handle := range []*sql.DB{s.write, s.aside, s.read} {
+		if handle != nil {
+			errs = append(errs, handle.Close())
+		}
 	}
-	return errors.Join(errWrite, s.read.Close())
+	return errors.Join(errs...)
 }
 
 // Path returns the path under which the store was opened.
@@ -72,7 +83,7 @@ func openWriter(ctx context.Context, path, solver string) (*Store, error) {
 	if err := refuseForeign(ctx, path); err != nil {
 		return nil, err
 	}
-	write, err := sql.Open("sqlite", dsn(path, "rwc", writing))
+	write, err := sql.Open("sqlite", dsn(path, "rwc", busyTimeoutMS, writing))
 	if err != nil {
 		return nil, err
 	}
@@ -80,11 +91,12 @@ func openWriter(ctx context.Context, path, solver string) (*Store, error) {
 	if err := prepareWriter(ctx, write, solver); err != nil {
 		return nil, errors.Join(explain(err), write.Close())
 	}
-	read, err := openPool(path)
+	s, err := openPool(path)
 	if err != nil {
 		return nil, errors.Join(err, write.Close())
 	}
-	return &Store{path: path, write: write, read: read}, nil
+	s.write = write
+	return s, nil
 }
 
 // refuseForeign looks, without changing it, whether the file at path is another
@@ -93,7 +105,7 @@ func refuseForeign(ctx context.Context, path string) error {
 	if info, err := os.Stat(path); err != nil || info.Size() == 0 {
 		return nil // a new store
 	}
-	look, err := sql.Open("sqlite", dsn(path, "ro", "_pragma=query_only(1)"))
+	look, err := sql.Open("sqlite", dsn(path, "ro", busyTimeoutMS, "_pragma=query_only(1)"))
 	if err != nil {
 		return err
 	}
@@ -148,21 +160,21 @@ func openReader(ctx context.Context, path, solver string) (*Store, error) {
 	if info, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) || err == nil && info.Size() == 0 {
 		return nil, ErrNoStore
 	}
-	read, err := openPool(path)
+	s, err := openPool(path)
 	if err != nil {
 		return nil, err
 	}
-	current, err := isCurrent(ctx, read)
+	current, err := isCurrent(ctx, s.read)
 	if isReadOnly(err) && !hasLog(path) {
-		return openFrozen(ctx, path, read)
+		return openFrozen(ctx, path, s)
 	}
 	if err != nil {
-		return nil, errors.Join(explain(err), read.Close())
+		return nil, errors.Join(explain(err), s.Close())
 	}
 	if current {
-		return &Store{path: path, read: read}, nil
+		return s, nil
 	}
-	if err := read.Close(); err != nil {
+	if err := s.Close(); err != nil {
 		return nil, err
 	}
 	return openWriter(ctx, path, solver)
@@ -170,11 +182,11 @@ func openReader(ctx context.Context, path, solver string) (*Store, error) {
 
 // openFrozen opens a store that this process may not write to, nor its folder,
 // where the log would be. Nobody is writing to it as long as there is no log.
-func openFrozen(ctx context.Context, path string, denied *sql.DB) (*Store, error) {
+func openFrozen(ctx context.Context, path string, denied *Store) (*Store, error) {
 	if err := denied.Close(); err != nil {
 		return nil, err
 	}
-	read, err := sql.Open("sqlite", dsn(path, "ro", "immutable=1&_pragma=query_only(1)"))
+	read, err := sql.Open("sqlite", dsn(path, "ro", busyTimeoutMS, "immutable=1&_pragma=query_only(1)"))
 	if err != nil {
 		return nil, err
 	}
@@ -200,12 +212,21 @@ func hasLog(path string) bool {
 	return err == nil && info.Size() > 0
 }
 
-// openPool opens the connections for reading. A question reads most pages once: a
-// cache larger than the upper levels of the indices only costs the time to touch
-// its memory, which was a tenth of a query over 9000 components with 2 MB and two
-// thirds with 16 MB.
-func openPool(path string) (*sql.DB, error) {
-	return sql.Open("sqlite", dsn(path, "rw", "_pragma=query_only(1)&_pragma=cache_size(-400)"))
+// openPool opens the connections for reading, and that for what questions keep, which
+// is made when it is needed. A question reads most pages once: a cache larger than the
+// upper levels of the indices only costs the time to touch its memory, which was a tenth
+// of a query over 9000 components with 2 MB and two thirds with 16 MB.
+func openPool(path string) (*Store, error) {
+	read, err := sql.Open("sqlite", dsn(path, "rw", busyTimeoutMS, "_pragma=query_only(1)&_pragma=cache_size(-400)"))
+	if err != nil {
+		return nil, err
+	}
+	aside, err := sql.Open("sqlite", dsn(path, "rw", asideTimeoutMS, writing))
+	if err != nil {
+		return nil, errors.Join(err, read.Close())
+	}
+	aside.SetMaxOpenConns(1)
+	return &Store{path: path, read: read, aside: aside}, nil
 }
 
 // dsn is a file: URI, since a plain path would drop the mode without a word.
@@ -213,14 +234,14 @@ func openPool(path string) (*sql.DB, error) {
 // write-ahead log is the file's.
 // synchronous NORMAL with a write-ahead log keeps the file consistent through
 // a power cut and can lose the last batches only whole.
-func dsn(path, mode string, more string) string {
+func dsn(path, mode string, timeoutMS int, more string) string {
 	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)"+
-		"&_pragma=synchronous(normal)", busyTimeoutMS)
+		"&_pragma=synchronous(normal)", timeoutMS)
 	u := url.URL{Scheme: "file", Opaque: url.PathEscape(filepath.ToSlash(path))}
 	return u.String() + "?mode=" + mode + "&" + pragmas + "&" + more
 }
 
-// explain turns the driver's words for the two mistakes people make into ours.
+// explain turns the driver's words for what people meet into ours.
 func explain(err error) error {
 	if err == nil {
 		return nil
@@ -231,6 +252,8 @@ func explain(err error) error {
 		return fmt.Errorf("the file is not a swaybook store: %w", err)
 	case strings.Contains(text, "unable to open database file"):
 		return fmt.Errorf("the file or its folder cannot be opened: %w", err)
+	case strings.Contains(text, "database is locked"):
+		return fmt.Errorf("another process is writing to the store: %w", err)
 	case strings.Contains(text, "readonly database"):
 		return fmt.Errorf("the file or its folder may not be written to: %w", err)
 	}

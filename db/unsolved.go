@@ -79,4 +79,4 @@ func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, comp
 }
 
 // computedTables hold what is computed of a record's roles in a generation.
-var computedTables = []string{"spectrum", "measure", "failure", "conditioned_finding", "conditioning"}
+var computedTables = []string{"spectrum", "measure", "failure", "conditioned_finding", "off_grid", "conditioning"}

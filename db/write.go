@@ -2,6 +2,7 @@ package db
 
 import (
 	"context"
+	"database/sql"
 	"encoding/json"
 	"errors"
 	"fmt"
@@ -19,7 +20,11 @@ func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 	if s.write == nil {
 		return errors.New("store is open for reading only")
 	}
-	tx, err := s.write.BeginTx(ctx, nil)
+	return transact(ctx, s.write, f)
+}
+
+func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) error {
+	tx, err := write.BeginTx(ctx, nil)
 	if err != nil {
 		return fmt.Errorf("begin transaction: %w", explain(err))
 	}
@@ -210,7 +215,7 @@ func (t *Tx) AddRotated(ctx context.Context, recordID, generationID int64, rotd5
 // forgetRotated removes what was computed of both horizontals of a record, in
 // every generation, because one of them is no longer what it was.
 func (t *Tx) forgetRotated(ctx context.Context, recordID int64) error {
-	for _, table := range []string{"spectrum", "measure"} {
+	for _, table := range []string{"spectrum", "measure", "off_grid"} {
 		if err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ? AND role IN ('`+RoleRotD50+`', '`+RoleRotD100+`')`, recordID); err != nil {
 			return fmt.Errorf("forget rotated %s: %w", table, err)
 		}

@@ -10,27 +10,41 @@ import (
 	"swaybook/pipeline/spectrum"
 )
 
-// compute fills in some oscillators of some motions of o from samples, both given by
-// position, and notes those whose samples do not allow it. A motion is the unit of
-// work; the samples of at most GOMAXPROCS motions are in memory. The snapshot is
-// one connection, whose calls database/sql carries out one at a time;
-// decompression and solving run side by side.
-func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, out *unfit, which, missing []int) error {
-	if len(missing) == 0 {
+// task is to compute oscillators.
+type task struct {
+	oscillators []spectrum.Oscillator
+	positions   []int   // of each among the ordinates, -1 for one that is kept only
+	keeper      *keeper // nil where nothing is kept
+}
+
+// newTask is to compute some of the oscillators of o, given by position.
+func newTask(o *ordinates, positions []int) *task {
+	t := &task{positions: positions}
+	for _, p := range positions {
+		t.oscillators = append(t.oscillators, o.oscillators[p])
+	}
+	return t
+}
+
+// compute carries the task out for some of the motions of o, given by position, and notes
+// those whose samples do not allow it. A motion is the unit of work; the samples of at
+// most GOMAXPROCS motions are in memory. The snapshot is one connection, whose calls
+// database/sql carries out one at a time; decompression and solving run side by side.
+func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, out *unfit, which []int, t *task) error {
+	if len(t.oscillators) == 0 {
 		return nil
 	}
-	oscillators := make([]spectrum.Oscillator, len(missing))
-	for i, p := range missing {
-		oscillators[i] = o.oscillators[p]
-	}
-	solvers := spectrum.NewSolvers(s.method, oscillators)
+	solvers := spectrum.NewSolvers(s.method, t.oscillators)
 	return inParallel(ctx, len(which), func(ctx context.Context, k int) error {
 		m := &motions[which[k]]
 		if out.has(which[k]) {
 			return nil
 		}
-		err := solve(ctx, solvers, s.snapshot, m, func(sd []float64, isFirst bool) {
-			o.put(which[k], m, isFirst, missing, sd)
+		err := solve(ctx, solvers, s.snapshot, m, func(c *computed) {
+			o.put(which[k], m, c.isFirst, t.positions, c.sd)
+			if t.keeper != nil {
+				t.keeper.add(ctx, c)
+			}
 		})
 		if errors.Is(err, db.ErrDamaged) {
 			out.add(which[k], reasonDamaged)
@@ -51,18 +65,28 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 	})
 }
 
-// solve hands over the SD, one an oscillator, of what the motion is made of: of
-// each component, or of the rotated pair at once.
-func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot, m *motion, put func(sd []float64, isFirst bool)) error {
+// computed is the SD in m, one an oscillator, of a record and role, and what it was
+// computed of.
+type computed struct {
+	recordID int64
+	role     string
+	of       []db.Origin
+	sd       []float64
+	isFirst  bool // of the motion's spectra
+}
+
+// solve hands over what is computed of what the motion is made of: of each component, or
+// of the rotated pair at once.
+func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot, m *motion, put func(*computed)) error {
 	if m.isRotated() {
-		sd, err := m.rotatedSD(ctx, snapshot, solvers)
+		sd, of, err := m.rotatedSD(ctx, snapshot, solvers)
 		if err == nil {
-			put(sd, true)
+			put(&computed{m.members[0].RecordID, m.role, of, sd, true})
 		}
 		return err
 	}
 	for k, c := range m.members {
-		conditioned, err := readConditioned(ctx, snapshot, c)
+		conditioned, origin, err := readConditioned(ctx, snapshot, c)
 		if err != nil {
 			return err
 		}
@@ -70,27 +94,27 @@ func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot
 		if err != nil {
 			return err
 		}
-		put(solver.SD(nil, conditioned.Acceleration), k == 0)
+		put(&computed{c.RecordID, c.Role, []db.Origin{origin}, solver.SD(nil, conditioned.Acceleration), k == 0})
 	}
 	return nil
 }
 
 // readConditioned reads a component's motion and carries out the recipe of the
 // generation, as was done before its stored spectra were computed.
-func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldComponent) (condition.Conditioned, error) {
+func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldComponent) (condition.Conditioned, db.Origin, error) {
 	recipe, err := condition.FromCanonical(snapshot.Generation.Recipe.Steps)
 	if err != nil {
-		return condition.Conditioned{}, err
+		return condition.Conditioned{}, db.Origin{}, err
 	}
-	delivered, err := snapshot.Motion(ctx, c.RecordID, c.Role)
+	delivered, origin, err := snapshot.Motion(ctx, c.RecordID, c.Role)
 	if err != nil {
-		return condition.Conditioned{}, err
+		return condition.Conditioned{}, origin, err
 	}
 	out, err := recipe.Apply(condition.Component(delivered))
 	if err != nil {
-		return out, fmt.Errorf("%w: %w", errUnconditioned, err)
+		return out, origin, fmt.Errorf("%w: %w", errUnconditioned, err)
 	}
-	return out, nil
+	return out, origin, nil
 }
 
 // errUnconditioned is of components on which the recipe cannot be carried out.

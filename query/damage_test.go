@@ -95,6 +95,7 @@ func TestDamagedAnswers(t *testing.T) {
 		t.Errorf("export of %+v:\n%s\nwant\n%s", summary, &text, &soundText)
 	}
 	alter(t, store, cutSeries, "good")
+	alter(t, store, `DELETE FROM off_grid`)
 	var empty *EmptyError
 	if _, err := demand.Ask(t.Context(), store); !errors.As(err, &empty) || !slices.Equal(empty.LeftOut, []LeftOut{{"damaged in the store", 2}}) {
 		t.Errorf("demand of nothing sound: %v", err)

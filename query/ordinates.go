@@ -98,16 +98,17 @@ func (m Measure) of(sd, omega float64) float64 {
 }
 
 // put takes in the SD of one member of motion i of some of the oscillators, sd[k]
-// of that of position positions[k]. The members come one after another.
+// of that of position positions[k], where that is not negative. The members come one
+// after another.
 func (o *ordinates) put(i int, m *motion, isFirst bool, positions []int, sd []float64) {
-	if isFirst {
-		for k, p := range positions {
-			o.sd[p*o.motions+i] = sd[k]
-		}
-		return
+	combine := func(_, next float64) float64 { return next }
+	if !isFirst {
+		combine = combiner(Component(m.role))
 	}
-	combine := combiner(Component(m.role))
 	for k, p := range positions {
+		if p < 0 {
+			continue
+		}
 		into := &o.sd[p*o.motions+i]
 		*into = combine(*into, sd[k])
 	}

@@ -62,7 +62,7 @@ func newReader(o *ordinates, motions []motion, unfit *unfit, stored, columns []i
 // readAll reads role by role, since that is how spectra lie in the store. It
 // returns the rotated motions whose spectrum is not stored.
 func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position int) (lacking []int, err error) {
-	parts := r.partsByRole()
+	parts := partsByRole(r.motions)
 	for _, role := range slices.Sorted(maps.Keys(parts)) {
 		found, err := r.readRole(ctx, snapshot, position, role, parts[role])
 		if err != nil {
@@ -81,10 +81,10 @@ func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position in
 
 // partsByRole lists what is wanted of each role, in the order of the records'
 // ids.
-func (r *reader) partsByRole() map[string][]part {
+func partsByRole(motions []motion) map[string][]part {
 	out := map[string][]part{}
-	for i := range r.motions {
-		m := &r.motions[i]
+	for i := range motions {
+		m := &motions[i]
 		if m.isRotated() {
 			out[m.role] = append(out[m.role], part{recordID: m.members[0].RecordID, motion: i, isFirst: true})
 			continue

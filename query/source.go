@@ -107,11 +107,11 @@ func (s *source) loadMotions(ctx context.Context, motions []motion, oscillators 
 		if err != nil {
 			return nil, nil, err
 		}
-		if err := s.compute(ctx, o, motions, out, lacking, stored); err != nil {
+		if err := s.compute(ctx, o, motions, out, lacking, newTask(o, stored)); err != nil {
 			return nil, nil, err
 		}
 	}
-	return o, out.reasons, s.compute(ctx, o, motions, out, upTo(len(motions)), w.missing)
+	return o, out.reasons, s.offGrid(ctx, o, motions, out, w.missing)
 }
 
 // unfit notes motions, by position, that cannot be answered for, and why. It is

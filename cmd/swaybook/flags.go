@@ -89,7 +89,11 @@ func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) erro
 		return err
 	}
 	defer store.Close()
-	return f(c.Context, store)
+	err = f(c.Context, store)
+	if why := store.Unkept(); why != nil {
+		fmt.Fprintf(c.App.ErrWriter, "note: ordinates computed off the grid are not kept for later questions: %v\n", why)
+	}
+	return err
 }
 
 // The periods that a grid may have, in s: beyond them lie mistakes in the unit.

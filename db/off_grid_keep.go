@@ -1,0 +1,180 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+)
+
+// Origin is what decides, beside the samples, what is computed of a component. Origins are
+// equal as long as what was computed of the component holds.
+type Origin struct {
+	recordID                     int64
+	role                         string
+	componentID                  int64
+	azimuth, lowCutHz, highCutHz sql.NullFloat64
+}
+
+// OffGridRow is the SD in m of one record and role, of all oscillators of some blocks one
+// after another, and what it was computed of.
+type OffGridRow struct {
+	RecordID int64
+	Role     string
+	Of       []Origin
+	Blocks   []OffGridBlock
+	SD       []float64
+}
+
+// offGridBytes bounds what is kept: a thousand records beside more than a hundred
+// thousand oscillators.
+const offGridBytes = 1 << 30
+
+// Unkept says why something that was computed could not be kept for later questions; nil
+// where all was.
+func (s *Store) Unkept() error {
+	s.mutex.Lock()
+	defer s.mutex.Unlock()
+	return s.unkept
+}
+
+// keep is Update of a store that may be open for reading, for what spares later questions
+// work and can as well not be stored. It reports whether it is.
+func (s *Store) keep(ctx context.Context, f func(*Tx) error) bool {
+	err := errors.New("the store may not be written to")
+	if s.aside != nil {
+		err = explain(transact(ctx, s.aside, f))
+	}
+	s.mutex.Lock()
+	defer s.mutex.Unlock()
+	if err != nil && s.unkept == nil && ctx.Err() == nil {
+		s.unkept = err
+	}
+	return err == nil
+}
+
+// ReserveOffGrid makes room for so many values of the snapshot's generation, and blocks of
+// these lists of oscillators. Where there is no room everything that is kept makes place;
+// the known blocks remain. It reports whether that can be kept: see Store.Unkept. It is not
+// for concurrent use.
+func (s *Snapshot) ReserveOffGrid(ctx context.Context, known []OffGridBlock, lists [][]Oscillator, values int) (blocks []OffGridBlock, ok bool) {
+	ok = s.store.keep(ctx, func(t *Tx) (err error) {
+		blocks, err = t.reserveOffGrid(ctx, s.Generation.ID, known, lists, values, offGridBytes/8)
+		return err
+	})
+	if ok {
+		s.reserved = append(s.reserved, blocks...)
+	}
+	return blocks, ok
+}
+
+func (t *Tx) reserveOffGrid(ctx context.Context, generationID int64, known []OffGridBlock, lists [][]Oscillator, values, most int) ([]OffGridBlock, error) {
+	if values > most {
+		return nil, fmt.Errorf("%d ordinates, at most %d are kept", values, most)
+	}
+	if err := t.makeRoom(ctx, most-values); err != nil {
+		return nil, err
+	}
+	for _, b := range known {
+		if err := t.exec(ctx, `INSERT OR IGNORE INTO off_grid_block (id, generation_id, oscillators) VALUES (?, ?, ?)`, b.ID, generationID, b.encode()); err != nil {
+			return nil, fmt.Errorf("keep block of oscillators: %w", err)
+		}
+	}
+	out := make([]OffGridBlock, len(lists))
+	for i, list := range lists {
+		out[i].Oscillators = list
+		var err error
+		if out[i].ID, err = t.insert(ctx, `INSERT INTO off_grid_block (generation_id, oscillators) VALUES (?, ?)`, generationID, out[i].encode()); err != nil {
+			return nil, fmt.Errorf("keep block of oscillators: %w", err)
+		}
+	}
+	return out, nil
+}
+
+// makeRoom forgets all that is kept, which is quick, where that is more than so many
+// values.
+func (t *Tx) makeRoom(ctx context.Context, most int) error {
+	var kept int
+	if err := t.tx.QueryRowContext(ctx, `SELECT coalesce(sum(kept), 0) FROM off_grid_block`).Scan(&kept); err != nil {
+		return fmt.Errorf("count kept ordinates: %w", err)
+	}
+	if kept <= most {
+		return nil
+	}
+	for _, table := range []string{"off_grid", "off_grid_block"} {
+		if err := t.exec(ctx, `DELETE FROM `+table); err != nil {
+			return fmt.Errorf("forget kept ordinates: %w", err)
+		}
+	}
+	return nil
+}
+
+// encode writes the oscillators as they are stored.
+func (b *OffGridBlock) encode() []byte {
+	values := make([]float64, 0, 2*len(b.Oscillators))
+	for _, o := range b.Oscillators {
+		values = append(values, o.PeriodS, o.Damping)
+	}
+	return sealDoubles(nil, values)
+}
+
+// KeepOffGrid stores ordinates off the grid for later questions, but those of components
+// that have become others since the snapshot. It reports whether it could: see
+// Store.Unkept.
+func (s *Snapshot) KeepOffGrid(ctx context.Context, rows []OffGridRow) bool {
+	return s.store.keep(ctx, func(t *Tx) error {
+		kept := map[int64]int{}
+		for i := range rows {
+			holds, err := t.holds(ctx, rows[i].Of)
+			if err == nil && holds {
+				err = t.keepOffGrid(ctx, s.Generation.ID, &rows[i], kept)
+			}
+			if err != nil {
+				return err
+			}
+		}
+		for id, n := range kept {
+			if err := t.exec(ctx, `UPDATE off_grid_block SET kept = kept + ? WHERE id = ?`, n, id); err != nil {
+				return fmt.Errorf("count kept ordinates: %w", err)
+			}
+		}
+		return nil
+	})
+}
+
+// keepOffGrid adds to kept the values by block.
+func (t *Tx) keepOffGrid(ctx context.Context, generationID int64, r *OffGridRow, kept map[int64]int) error {
+	rest := r.SD
+	var data []byte
+	for i := range r.Blocks {
+		b := &r.Blocks[i]
+		data = sealDoubles(data[:0], rest[:len(b.Oscillators)])
+		rest = rest[len(b.Oscillators):]
+		err := t.exec(ctx, `INSERT OR REPLACE INTO off_grid (record_id, role, generation_id, block_id, sd_m) VALUES (?, ?, ?, ?, ?)`,
+			r.RecordID, r.Role, generationID, b.ID, data)
+		if err != nil {
+			return fmt.Errorf("keep ordinates: %w", err)
+		}
+		kept[b.ID] += len(b.Oscillators)
+	}
+	return nil
+}
+
+// holds reports whether the components are still what they were.
+func (t *Tx) holds(ctx context.Context, of []Origin) (bool, error) {
+	for _, was := range of {
+		is := Origin{recordID: was.recordID, role: was.role}
+		err := t.tx.QueryRowContext(ctx, `SELECT id, azimuth_deg, low_cut_hz, high_cut_hz FROM component WHERE record_id = ? AND role = ?`, was.recordID, was.role).
+			Scan(&is.componentID, &is.azimuth, &is.lowCutHz, &is.highCutHz)
+		if errors.Is(err, sql.ErrNoRows) {
+			return false, nil
+		}
+		if err != nil {
+			return false, fmt.Errorf("look at component: %w", err)
+		}
+		if is != was {
+			return false, nil
+		}
+	}
+	return true, nil
+}
