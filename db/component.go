@@ -4,8 +4,6 @@ import (
 	"context"
 	"encoding/json"
 	"fmt"
-	"maps"
-	"slices"
 	"time"
 )
 
@@ -39,16 +37,17 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 	if err != nil {
 		return err
 	}
+	seriesID, err := t.putSeries(ctx, data, digest)
+	if err != nil {
+		return err
+	}
 	id, err := t.insert(ctx, `INSERT INTO component (record_id, role, axis, label, rank, azimuth_deg, channel, start_at, step_s, samples, unit, processing,
-			low_cut_hz, high_cut_hz, header_peak_m_s2, warnings, source_id, source_line)
-		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
+			low_cut_hz, high_cut_hz, header_peak_m_s2, warnings, source_id, source_line, series_id)
+		VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
 		recordID, c.Role, c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.Channel, timeText(c.Start), c.StepS, c.Samples, c.Unit, c.Processing,
-		c.LowCutHz, c.HighCutHz, c.HeaderPeak, string(warnings), c.SourceID, c.SourceLine)
+		c.LowCutHz, c.HighCutHz, c.HeaderPeak, string(warnings), c.SourceID, c.SourceLine, seriesID)
 	if err != nil {
 		return fmt.Errorf("store component: %w", err)
-	}
-	if err := t.exec(ctx, `INSERT INTO series (component_id, sha256, data) VALUES (?, ?, ?)`, id, digest, data); err != nil {
-		return fmt.Errorf("store samples: %w", err)
 	}
 	for _, f := range c.Findings {
 		err := t.exec(ctx, `INSERT INTO finding (component_id, flag, value, bound, words) VALUES (?, ?, ?, ?, ?)`, id, f.Flag, f.Value, f.Bound, f.Words)
@@ -56,7 +55,16 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 			return fmt.Errorf("store finding: %w", err)
 		}
 	}
-	return t.addSpectra(ctx, recordID, c.Role, generation, computed)
+	return t.addComputed(ctx, componentInputs, recordID, c.Role, generation, computed)
+}
+
+// putSeries stores samples, which are held once.
+func (t *Tx) putSeries(ctx context.Context, data []byte, digest string) (int64, error) {
+	id, err := t.put(ctx, `INSERT INTO series (sha256, data) VALUES (?, ?) ON CONFLICT (sha256) DO UPDATE SET sha256 = sha256 RETURNING id`, digest, data)
+	if err != nil {
+		return 0, fmt.Errorf("store samples: %w", err)
+	}
+	return id, nil
 }
 
 // FlagDuplicated is of components of one record with the same samples.
@@ -66,7 +74,7 @@ const FlagDuplicated = "duplicated"
 // another one, which comes now, has them too. It returns what is to be noted with that
 // one, nothing where there are none.
 func (t *Tx) FlagTwins(ctx context.Context, recordID int64, digest string) ([]Finding, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT c.id FROM component c JOIN series s ON s.component_id = c.id WHERE c.record_id = ? AND s.sha256 = ?`, recordID, digest)
+	rows, err := t.tx.QueryContext(ctx, `SELECT c.id FROM component c JOIN series s ON s.id = c.series_id WHERE c.record_id = ? AND s.sha256 = ?`, recordID, digest)
 	if err != nil {
 		return nil, fmt.Errorf("find equal components: %w", err)
 	}
@@ -82,38 +90,6 @@ func (t *Tx) FlagTwins(ctx context.Context, recordID int64, digest string) ([]Fi
 		}
 	}
 	return []Finding{f}, nil
-}
-
-func (t *Tx) addSpectra(ctx context.Context, recordID int64, role string, generation int64, computed Spectra) error {
-	for i, text := range computed.sd {
-		err := t.exec(ctx, `INSERT INTO spectrum (generation_id, damping_position, role, record_id, sd_m) VALUES (?, ?, ?, ?, ?)`,
-			generation, i, role, recordID, text)
-		if err != nil {
-			return fmt.Errorf("store spectrum: %w", err)
-		}
-	}
-	if c := computed.conditioning; c != nil {
-		err := t.exec(ctx, `INSERT INTO conditioning (generation_id, record_id, role, step_s, samples, lead_s, low_cut_hz, high_cut_hz, long_s)
-			VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?)`, generation, recordID, role, c.StepS, c.Samples, c.LeadS, c.LowCutHz, c.HighCutHz, c.LongS)
-		if err != nil {
-			return fmt.Errorf("store conditioning: %w", err)
-		}
-		for _, f := range c.Findings {
-			err := t.exec(ctx, `INSERT INTO conditioned_finding (generation_id, record_id, role, flag, value, bound, words) VALUES (?, ?, ?, ?, ?, ?, ?)`,
-				generation, recordID, role, f.Flag, f.Value, f.Bound, f.Words)
-			if err != nil {
-				return fmt.Errorf("store finding: %w", err)
-			}
-		}
-	}
-	for _, name := range slices.Sorted(maps.Keys(computed.measures)) {
-		err := t.exec(ctx, `INSERT INTO measure (generation_id, record_id, role, name, value) VALUES (?, ?, ?, ?, ?)`,
-			generation, recordID, role, name, computed.measures[name])
-		if err != nil {
-			return fmt.Errorf("store measure %s: %w", name, err)
-		}
-	}
-	return nil
 }
 
 // StoredRecord is a record's identity in the store with its components in the
@@ -205,81 +181,20 @@ func (t *Tx) components(ctx context.Context, recordID int64) ([]Component, error
 }
 
 // DescribeComponent replaces a component's axis, label, rank and azimuth by
-// those of c, and its corner frequencies where c states them. Another azimuth of a
-// horizontal turns the pair that it belongs to, so what was rotated of that is
-// removed; other corners may be other filters, so what was computed behind a recipe's
-// steps is, too. The run that does so computes both anew.
+// those of c, and its corner frequencies where c states them. What was computed of other
+// inputs is its no more: see Adopt.
 func (t *Tx) DescribeComponent(ctx context.Context, componentID int64, c Component) error {
-	if err := t.forgetTurned(ctx, componentID, c.AzimuthDeg); err != nil {
-		return err
-	}
-	if err := t.forgetConditioned(ctx, componentID, c.LowCutHz, c.HighCutHz); err != nil {
-		return err
-	}
 	err := t.exec(ctx, `UPDATE component SET axis = ?, label = ?, rank = ?, azimuth_deg = ?,
 		low_cut_hz = coalesce(?, low_cut_hz), high_cut_hz = coalesce(?, high_cut_hz) WHERE id = ?`,
 		c.Axis, c.Label, c.Rank, c.AzimuthDeg, c.LowCutHz, c.HighCutHz, componentID)
 	if err != nil {
 		return fmt.Errorf("describe component: %w", err)
 	}
-	return nil
-}
-
-// forgetTurned removes what was rotated of the component's record where its
-// azimuth is not the stored one.
-func (t *Tx) forgetTurned(ctx context.Context, componentID int64, azimuthDeg *float64) error {
-	rows, err := t.tx.QueryContext(ctx, `SELECT record_id FROM component WHERE id = ? AND azimuth_deg IS NOT ?`, componentID, azimuthDeg)
-	if err != nil {
-		return fmt.Errorf("describe component: %w", err)
-	}
-	turned, err := collect(rows, func(id *int64) []any { return []any{id} })
-	if err != nil {
-		return fmt.Errorf("describe component: %w", err)
-	}
-	for _, id := range turned {
-		if err := t.forgetRotated(ctx, id); err != nil {
-			return err
-		}
-	}
-	return nil
-}
-
-// forgetConditioned removes what was computed of the component behind the steps of a
-// recipe, and of its record's horizontals, where a corner that is known is not the stored
-// one. A recipe that failed on it is tried again.
-func (t *Tx) forgetConditioned(ctx context.Context, componentID int64, lowCutHz, highCutHz *float64) error {
-	rows, err := t.tx.QueryContext(ctx, `SELECT c.record_id, c.role FROM component c WHERE c.id = ?1
-		AND (coalesce(?2, c.low_cut_hz) IS NOT c.low_cut_hz OR coalesce(?3, c.high_cut_hz) IS NOT c.high_cut_hz)
-		AND (EXISTS (SELECT 1 FROM conditioning k WHERE k.record_id = c.record_id AND k.role = c.role)
-			OR EXISTS (SELECT 1 FROM failure f WHERE f.record_id = c.record_id AND f.role = c.role))`, componentID, lowCutHz, highCutHz)
-	if err != nil {
-		return fmt.Errorf("describe component: %w", err)
-	}
-	changed, err := collect(rows, func(c *roleOf) []any { return []any{&c.record, &c.role} })
-	if err != nil {
-		return fmt.Errorf("describe component: %w", err)
-	}
-	for _, c := range changed {
-		if err := t.exec(ctx, `DELETE FROM failure WHERE record_id = ? AND role = ?`, c.record, c.role); err != nil {
-			return fmt.Errorf("forget failure: %w", err)
-		}
-		// The conditioning goes last: it names the generations.
-		for _, table := range computedTables {
-			err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ?1 AND role = ?2 AND generation_id IN
-				(SELECT generation_id FROM conditioning WHERE record_id = ?1 AND role = ?2)`, c.record, c.role)
-			if err != nil {
-				return fmt.Errorf("forget %s: %w", table, err)
-			}
-		}
-		if err := t.forgetRotated(ctx, c.record); err != nil {
-			return err
-		}
-	}
-	return nil
+	return t.forgetOutdated(ctx, componentID)
 }
 
 // roleTables hold rows by record and role.
-var roleTables = append([]string{"component"}, computedTables...)
+var roleTables = []string{"component", "computed"}
 
 // MoveComponents gives components of one record, by their roles, to another, where they
 // have the roles that these are the keys of, with their spectra and measures. What their
@@ -287,10 +202,8 @@ var roleTables = append([]string{"component"}, computedTables...)
 // otherwise: of equal statements one file's is kept. What was rotated of either record's
 // horizontals is removed.
 func (t *Tx) MoveComponents(ctx context.Context, from, to int64, roles map[string]string, paths []string) error {
-	for _, id := range []int64{from, to} {
-		if err := t.forgetRotated(ctx, id); err != nil {
-			return err
-		}
+	if err := t.forgetRotated(ctx, from, to); err != nil {
+		return err
 	}
 	for _, table := range roleTables {
 		for role, other := range roles {

@@ -92,7 +92,11 @@ func (t *Tx) PutGeneration(ctx context.Context, recipe Recipe, grid Grid, solver
 
 // idOf returns the id that a query gives, 0 where it gives none.
 func (t *Tx) idOf(ctx context.Context, query string, args ...any) (int64, error) {
-	rows, err := t.tx.QueryContext(ctx, query, args...)
+	return idOf(ctx, t.tx, query, args...)
+}
+
+func idOf(ctx context.Context, q queryer, query string, args ...any) (int64, error) {
+	rows, err := q.QueryContext(ctx, query, args...)
 	if err != nil {
 		return 0, err
 	}
@@ -116,6 +120,9 @@ func (t *Tx) Publish(ctx context.Context, generationID int64) error {
 }
 
 func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
+	if len(grid.Dampings) > mostDampings {
+		return 0, fmt.Errorf("%d dampings, a store holds at most %d", len(grid.Dampings), mostDampings)
+	}
 	id, err := t.insert(ctx, `INSERT INTO grid (hash) VALUES (?)`, grid.Hash())
 	if err != nil {
 		return 0, err

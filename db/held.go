@@ -141,20 +141,20 @@ type findingOf struct {
 	Finding
 }
 
-// ofRecords restricts rows of a generation to the records of the components that meet
-// the condition, where there is one.
-func (s *Snapshot) ofRecords(condition string, args []any) (string, []any) {
-	text := ` WHERE generation_id = ?`
+// ofComputed joins what is computed in the generation of the components that meet the
+// condition, where there is one, to a table of it under the name x.
+func (s *Snapshot) ofComputed(table, condition string, args []any) (string, []any) {
+	text := ` FROM computed k JOIN ` + table + ` x ON x.computation_id = k.computation_id WHERE k.generation_id = ?`
 	if condition != "" {
-		text += ` AND record_id IN (SELECT c.record_id FROM component c` + condition + `)`
+		text += ` AND k.record_id IN (SELECT c.record_id FROM component c` + condition + `)`
 	}
 	return text, append([]any{s.Generation.ID}, args...)
 }
 
 // conditionings are those of the generation.
 func (s *Snapshot) conditionings(ctx context.Context, condition string, args []any) (map[roleOf]*Conditioning, error) {
-	where, args := s.ofRecords(condition, args)
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, step_s, samples, lead_s, low_cut_hz, high_cut_hz, long_s FROM conditioning`+where, args...)
+	from, args := s.ofComputed("conditioning", condition, args)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.step_s, x.samples, x.lead_s, x.low_cut_hz, x.high_cut_hz, x.long_s`+from, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read conditioning: %w", err)
 	}
@@ -196,8 +196,8 @@ func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (
 // addConditionedFindings adds to the conditionings what was found in the motions that
 // they left.
 func (s *Snapshot) addConditionedFindings(ctx context.Context, to map[roleOf]*Conditioning, condition string, args []any) error {
-	where, args := s.ofRecords(condition, args)
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, flag, value, bound, words FROM conditioned_finding`+where+` ORDER BY record_id, role, flag`, args...)
+	from, args := s.ofComputed("conditioned_finding", condition, args)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.flag, x.value, x.bound, x.words`+from+` ORDER BY k.record_id, k.role, x.flag`, args...)
 	if err != nil {
 		return fmt.Errorf("read findings: %w", err)
 	}
@@ -222,7 +222,8 @@ func (s *Snapshot) Flag(ctx context.Context, components []HeldComponent, flags [
 	for _, flag := range flags {
 		err := s.flag(ctx, delivered, flag, `SELECT c.record_id, c.role FROM finding f JOIN component c ON c.id = f.component_id WHERE f.flag = ?`, flag)
 		if err == nil {
-			err = s.flag(ctx, left, flag, `SELECT record_id, role FROM conditioned_finding WHERE generation_id = ? AND flag = ?`, s.Generation.ID, flag)
+			err = s.flag(ctx, left, flag, `SELECT k.record_id, k.role FROM conditioned_finding f JOIN computed k ON k.computation_id = f.computation_id
+				WHERE k.generation_id = ? AND f.flag = ?`, s.Generation.ID, flag)
 		}
 		if err != nil {
 			return fmt.Errorf("read findings: %w", err)
@@ -256,9 +257,9 @@ func (s *Snapshot) flag(ctx context.Context, flagged map[roleOf][]Finding, flag,
 
 // measures are those of the generation but for the peaks.
 func (s *Snapshot) measures(ctx context.Context, condition string, args []any) (map[roleOf]map[string]float64, error) {
-	where, args := s.ofRecords(condition, args)
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, name, value FROM measure`+where+
-		` AND name NOT IN ('`+MeasurePGA+`', '`+MeasurePGV+`', '`+MeasurePGD+`')`, args...)
+	from, args := s.ofComputed("measure", condition, args)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.name, x.value`+from+
+		` AND x.name NOT IN ('`+MeasurePGA+`', '`+MeasurePGV+`', '`+MeasurePGD+`')`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read measures: %w", err)
 	}
@@ -327,9 +328,9 @@ func componentQuery(d Details, generation int64) string {
 	names, _ := new(componentRow).columns(d)
 	text := `SELECT ` + names + ` FROM component c JOIN record r ON r.id = c.record_id`
 	if d&DetailPeaks != 0 {
+		text += fmt.Sprintf(` LEFT JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = %d`, generation)
 		for _, m := range [][2]string{{"pga", MeasurePGA}, {"pgv", MeasurePGV}, {"pgd", MeasurePGD}} {
-			text += fmt.Sprintf(` LEFT JOIN measure %[1]s ON %[1]s.record_id = c.record_id AND %[1]s.role = c.role
-				AND %[1]s.generation_id = %[3]d AND %[1]s.name = '%[2]s'`, m[0], m[1], generation)
+			text += fmt.Sprintf(` LEFT JOIN measure %[1]s ON %[1]s.computation_id = k.computation_id AND %[1]s.name = '%[2]s'`, m[0], m[1])
 		}
 	}
 	if d&DetailChannel != 0 {

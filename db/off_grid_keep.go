@@ -2,26 +2,15 @@ package db
 
 import (
 	"context"
-	"database/sql"
 	"errors"
 	"fmt"
 )
 
-// Origin is what decides, beside the samples, what is computed of a component. Origins are
-// equal as long as what was computed of the component holds.
-type Origin struct {
-	recordID                     int64
-	role                         string
-	componentID                  int64
-	azimuth, lowCutHz, highCutHz sql.NullFloat64
-}
-
 // OffGridRow is the SD in m of one record and role, of all oscillators of some blocks one
-// after another, and what it was computed of.
+// after another.
 type OffGridRow struct {
 	RecordID int64
 	Role     string
-	Of       []Origin
 	Blocks   []OffGridBlock
 	SD       []float64
 }
@@ -118,16 +107,17 @@ func (b *OffGridBlock) encode() []byte {
 	return sealDoubles(nil, values)
 }
 
-// KeepOffGrid stores ordinates off the grid for later questions, but those of components
-// that have become others since the snapshot. It reports whether it could: see
-// Store.Unkept.
+// KeepOffGrid stores ordinates off the grid for later questions, beside the computations
+// that the records' roles have in the snapshot: of pairs that are not rotated there is
+// none, and nothing is kept. It reports whether it could: see Store.Unkept.
 func (s *Snapshot) KeepOffGrid(ctx context.Context, rows []OffGridRow) bool {
 	return s.store.keep(ctx, func(t *Tx) error {
 		kept := map[int64]int{}
 		for i := range rows {
-			holds, err := t.holds(ctx, rows[i].Of)
-			if err == nil && holds {
-				err = t.keepOffGrid(ctx, s.Generation.ID, &rows[i], kept)
+			of, err := idOf(ctx, s.tx, `SELECT computation_id FROM computed WHERE record_id = ? AND role = ? AND generation_id = ?`,
+				rows[i].RecordID, rows[i].Role, s.Generation.ID)
+			if err == nil && of != 0 {
+				err = t.keepOffGrid(ctx, of, &rows[i], kept)
 			}
 			if err != nil {
 				return err
@@ -143,38 +133,18 @@ func (s *Snapshot) KeepOffGrid(ctx context.Context, rows []OffGridRow) bool {
 }
 
 // keepOffGrid adds to kept the values by block.
-func (t *Tx) keepOffGrid(ctx context.Context, generationID int64, r *OffGridRow, kept map[int64]int) error {
+func (t *Tx) keepOffGrid(ctx context.Context, computationID int64, r *OffGridRow, kept map[int64]int) error {
 	rest := r.SD
 	var data []byte
 	for i := range r.Blocks {
 		b := &r.Blocks[i]
 		data = sealDoubles(data[:0], rest[:len(b.Oscillators)])
 		rest = rest[len(b.Oscillators):]
-		err := t.exec(ctx, `INSERT OR REPLACE INTO off_grid (record_id, role, generation_id, block_id, sd_m) VALUES (?, ?, ?, ?, ?)`,
-			r.RecordID, r.Role, generationID, b.ID, data)
+		err := t.exec(ctx, `INSERT OR REPLACE INTO off_grid (computation_id, block_id, sd_m) VALUES (?, ?, ?)`, computationID, b.ID, data)
 		if err != nil {
 			return fmt.Errorf("keep ordinates: %w", err)
 		}
 		kept[b.ID] += len(b.Oscillators)
 	}
 	return nil
-}
-
-// holds reports whether the components are still what they were.
-func (t *Tx) holds(ctx context.Context, of []Origin) (bool, error) {
-	for _, was := range of {
-		is := Origin{recordID: was.recordID, role: was.role}
-		err := t.tx.QueryRowContext(ctx, `SELECT id, azimuth_deg, low_cut_hz, high_cut_hz FROM component WHERE record_id = ? AND role = ?`, was.recordID, was.role).
-			Scan(&is.componentID, &is.azimuth, &is.lowCutHz, &is.highCutHz)
-		if errors.Is(err, sql.ErrNoRows) {
-			return false, nil
-		}
-		if err != nil {
-			return false, fmt.Errorf("look at component: %w", err)
-		}
-		if is != was {
-			return false, nil
-		}
-	}
-	return true, nil
 }

@@ -47,8 +47,7 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 		FROM record r
 		CROSS JOIN component a ON a.record_id = r.id AND a.role = '`+RoleH1+`'
 		CROSS JOIN component b ON b.record_id = r.id AND b.role = '`+RoleH2+`'
-		WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.generation_id = ? AND s.damping_position = 0
-			AND s.role = '`+RoleRotD100+`' AND s.record_id = r.id) `+condition+`
+		WHERE NOT EXISTS (SELECT 1 FROM computed k WHERE k.generation_id = ? AND k.role = '`+RoleRotD100+`' AND k.record_id = r.id) `+condition+`
 		ORDER BY r.id`, append([]any{generationID}, args...)...)
 	if err != nil {
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)
@@ -79,12 +78,14 @@ func unrotated(ctx context.Context, q queryer, generationID int64, condition str
 
 // StoredMotion is what the store holds of a component, still encoded.
 type StoredMotion struct {
-	origin            Origin
+	role              string
 	samples           int
 	digest            string
 	data              []byte // nil where there is none
 	stepS             float64
 	state             string
+	lowCutHz          sql.NullFloat64
+	highCutHz         sql.NullFloat64
 	sd                [][]byte // by damping
 	periods, dampings int
 }
@@ -107,12 +108,9 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 
 // readSeries reads the samples of one component and what goes with them.
 func readSeries(ctx context.Context, q queryer, condition string, args ...any) (m StoredMotion, err error) {
-	o := &m.origin
-	err = q.QueryRowContext(ctx, `SELECT c.record_id, c.role, c.id, c.azimuth_deg, c.low_cut_hz, c.high_cut_hz,
-			c.samples, coalesce(s.sha256, ''), s.data, c.step_s, c.processing
-		FROM component c LEFT JOIN series s ON s.component_id = c.id WHERE `+condition, args...).
-		Scan(&o.recordID, &o.role, &o.componentID, &o.azimuth, &o.lowCutHz, &o.highCutHz,
-			&m.samples, &m.digest, &m.data, &m.stepS, &m.state)
+	err = q.QueryRowContext(ctx, `SELECT c.role, c.samples, coalesce(s.sha256, ''), s.data, c.step_s, c.processing, c.low_cut_hz, c.high_cut_hz
+		FROM component c LEFT JOIN series s ON s.id = c.series_id WHERE `+condition, args...).
+		Scan(&m.role, &m.samples, &m.digest, &m.data, &m.stepS, &m.state, &m.lowCutHz, &m.highCutHz)
 	if err != nil {
 		return m, fmt.Errorf("read samples: %w", err)
 	}
@@ -125,11 +123,10 @@ func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64
 		return m, err
 	}
 	m.periods, m.dampings = len(g.Grid.PeriodsS), len(g.Grid.Dampings)
-	// The plus keeps the generation, which nearly every spectrum has, from being
-	// taken for the better index.
 	rows, err := tx.QueryContext(ctx, `SELECT s.sd_m FROM component c
-		JOIN spectrum s ON s.record_id = c.record_id AND s.role = c.role AND +s.generation_id = ?
-		WHERE c.id = ? ORDER BY s.damping_position`, g.ID, componentID)
+		JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = ?
+		JOIN spectrum s ON s.id BETWEEN `+firstSpectrum+` AND `+lastSpectrum+`
+		WHERE c.id = ? ORDER BY s.id`, g.ID, componentID)
 	if err != nil {
 		return m, err
 	}
@@ -144,7 +141,7 @@ func (m StoredMotion) DecodeMotion() (Motion, error) {
 	if err != nil {
 		return Motion{}, m.damaged(err)
 	}
-	return Motion{Acceleration: samples, StepS: m.stepS, State: m.state, LowCutHz: orNaN(m.origin.lowCutHz), HighCutHz: orNaN(m.origin.highCutHz)}, nil
+	return Motion{Acceleration: samples, StepS: m.stepS, State: m.state, LowCutHz: orNaN(m.lowCutHz), HighCutHz: orNaN(m.highCutHz)}, nil
 }
 
 // ErrUnsolved says that a component's spectra have not been computed in a generation.
@@ -155,7 +152,7 @@ var ErrUnsolved = errors.New("spectra not computed")
 // ErrDamaged, and says what is.
 func (m StoredMotion) DecodeSD() ([]float64, error) {
 	if len(m.sd) == 0 {
-		return nil, fmt.Errorf("%s: %w", m.origin.role, ErrUnsolved)
+		return nil, fmt.Errorf("%s: %w", m.role, ErrUnsolved)
 	}
 	if len(m.sd) != m.dampings {
 		return nil, m.damaged(fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings))
@@ -170,5 +167,5 @@ func (m StoredMotion) DecodeSD() ([]float64, error) {
 }
 
 func (m StoredMotion) damaged(err error) error {
-	return fmt.Errorf("%w: %s: %w", ErrDamaged, m.origin.role, err)
+	return fmt.Errorf("%w: %s: %w", ErrDamaged, m.role, err)
 }

@@ -95,13 +95,13 @@ type Span struct{ From, To int }
 // record's id. Each text holds one value a period, unless it is damaged. f must
 // not keep it.
 func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
-	what, args := "sd_m", []any{s.Generation.ID, dampingPosition, role}
+	what, args := "s.sd_m", []any{s.Generation.ID, dampingPosition, role}
 	if periods != (Span{0, len(s.Generation.Grid.PeriodsS)}) {
-		what = "substr(sd_m, ?4, ?5)"
+		what = "substr(s.sd_m, ?4, ?5)"
 		args = append(args, periods.From*OrdinateWidth+1, (periods.To-periods.From)*OrdinateWidth)
 	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, `+what+` FROM spectrum
-		WHERE generation_id = ?1 AND damping_position = ?2 AND role = ?3 ORDER BY record_id`, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, `+what+` FROM computed k CROSS JOIN spectrum s ON s.id = `+firstSpectrum+` + ?2
+		WHERE k.generation_id = ?1 AND k.role = ?3 ORDER BY k.record_id`, args...)
 	if err != nil {
 		return fmt.Errorf("read spectra: %w", err)
 	}
@@ -122,7 +122,8 @@ func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int
 // RotatedPeaks returns the peaks that are stored under a role of RotD, by the
 // record's id: those of the records whose spectra of that role are stored.
 func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Peaks, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, name, value FROM measure WHERE generation_id = ? AND role = ?`, s.Generation.ID, role)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, m.name, m.value FROM computed k
+		CROSS JOIN measure m ON m.computation_id = k.computation_id WHERE k.generation_id = ? AND k.role = ?`, s.Generation.ID, role)
 	if err != nil {
 		return nil, fmt.Errorf("read rotated peaks: %w", err)
 	}
@@ -154,16 +155,14 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 	return out, nil
 }
 
-// Motion returns a component's motion, its samples checked against their digest, and
-// what else decides what is computed of it. The error wraps ErrDamaged where the samples
-// cannot be had.
-func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, Origin, error) {
+// Motion returns a component's motion, its samples checked against their digest. The
+// error wraps ErrDamaged where these cannot be had.
+func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, error) {
 	m, err := readSeries(ctx, s.tx, `c.record_id = ? AND c.role = ?`, recordID, role)
 	if err != nil {
-		return Motion{}, Origin{}, err
+		return Motion{}, err
 	}
-	motion, err := m.DecodeMotion()
-	return motion, m.origin, err
+	return m.DecodeMotion()
 }
 
 // Rejections returns what could not be stored, and what is stored and could not be

@@ -17,7 +17,7 @@ type Unsolved struct {
 // Unsolved returns the components that lack their spectra in the generation and are not
 // known to fail, in the order in which they were stored.
 func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, error) {
-	return unsolved(ctx, s.read, generationID, "AND f.reason IS NULL")
+	return unsolved(ctx, s.read, generationID, "AND x.failure IS NULL")
 }
 
 // Unsolved returns all components that lack their spectra in the snapshot's generation. It
@@ -25,7 +25,7 @@ func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, e
 func (s *Snapshot) Unsolved(ctx context.Context) ([]Unsolved, error) {
 	var components, spectra int
 	err := s.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM component),
-		(SELECT count(*) FROM spectrum WHERE generation_id = ? AND damping_position = 0 AND role IN ('`+RoleH1+`', '`+RoleH2+`', '`+RoleV+`'))`,
+		(SELECT count(*) FROM computed k JOIN computation x ON x.id = k.computation_id WHERE k.generation_id = ? AND k.role IN ('`+RoleH1+`', '`+RoleH2+`', '`+RoleV+`') AND x.failure IS NULL)`,
 		s.Generation.ID).Scan(&components, &spectra)
 	if err != nil || components == spectra {
 		return nil, err
@@ -40,13 +40,13 @@ func (t *Tx) IsUnsolved(ctx context.Context, generationID int64, u Unsolved) (bo
 	return len(found) == 1 && found[0] == u, err
 }
 
-// unsolved looks for each component's spectrum of the first damping: all dampings are
-// stored in one transaction.
+// unsolved looks for what is computed of each component, and whether its first spectrum is
+// there: what was lost is computed again.
 func unsolved(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Unsolved, error) {
-	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, coalesce(f.reason, '') FROM component c JOIN record r ON r.id = c.record_id
-		LEFT JOIN failure f ON f.generation_id = ? AND f.record_id = c.record_id AND f.role = c.role
-		WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.generation_id = ? AND s.damping_position = 0
-			AND s.role = c.role AND s.record_id = c.record_id) `+condition+` ORDER BY c.id`, append([]any{generationID, generationID}, args...)...)
+	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, coalesce(x.failure, '') FROM component c JOIN record r ON r.id = c.record_id
+		LEFT JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = ?
+		LEFT JOIN computation x ON x.id = k.computation_id
+		WHERE (x.id IS NULL OR x.failure IS NOT NULL OR NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.id = `+firstSpectrum+`)) `+condition+` ORDER BY c.id`, append([]any{generationID}, args...)...)
 	if err != nil {
 		return nil, fmt.Errorf("find components without spectrum: %w", err)
 	}
@@ -65,18 +65,3 @@ func (s *Store) ReadUnsolved(ctx context.Context, u Unsolved) (StoredMotion, err
 	}
 	return m, nil
 }
-
-// AddSolved stores what was computed of a component, instead of what the generation may
-// hold of it.
-func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, computed Spectra) error {
-	for _, table := range computedTables {
-		err := t.exec(ctx, `DELETE FROM `+table+` WHERE generation_id = ? AND record_id = ? AND role = ?`, generationID, u.RecordID, u.Role)
-		if err != nil {
-			return fmt.Errorf("forget %s: %w", table, err)
-		}
-	}
-	return t.addSpectra(ctx, u.RecordID, u.Role, generationID, computed)
-}
-
-// computedTables hold what is computed of a record's roles in a generation.
-var computedTables = []string{"spectrum", "measure", "failure", "conditioned_finding", "off_grid", "conditioning"}

@@ -26,7 +26,7 @@ type Version struct {
 const versionColumns = `c.id, c.record_id, r.code, r.instrument, r.siting, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
 	coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
 	f.path, f.sha256, f.format, x.sha256, coalesce(c.motion_id, 0), coalesce(e.primary_id, e.id, 0), coalesce(upper(s.network), ''), coalesce(upper(s.code), '')
-	FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.component_id = c.id
+	FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.id = c.series_id
 	LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id`
 
 // Related returns the records that may hold the same motions as this one, itself
@@ -43,8 +43,7 @@ func (t *Tx) Related(ctx context.Context, recordID int64) ([]int64, error) {
 		UNION SELECT other.id FROM this CROSS JOIN event f ON f.id = this.quake OR f.primary_id = this.quake
 			CROSS JOIN station same ON same.code = this.code COLLATE NOCASE AND (same.network = this.network COLLATE NOCASE OR same.network = '' OR this.network = '')
 			CROSS JOIN record other ON other.event_id = f.id AND other.station_id = same.id
-		UNION SELECT o.record_id FROM this CROSS JOIN component c ON c.record_id = this.id CROSS JOIN series x ON x.component_id = c.id
-			CROSS JOIN series y ON y.sha256 = x.sha256 CROSS JOIN component o ON o.id = y.component_id CROSS JOIN record r ON r.id = o.record_id
+		UNION SELECT o.record_id FROM this CROSS JOIN component c ON c.record_id = this.id CROSS JOIN component o ON o.series_id = c.series_id CROSS JOIN record r ON r.id = o.record_id
 			LEFT JOIN event f ON f.id = r.event_id LEFT JOIN station s ON s.id = r.station_id
 			WHERE (f.id IS NULL OR this.quake IS NULL OR coalesce(f.primary_id, f.id) = this.quake)
 				AND (s.code IS NULL OR this.code IS NULL OR s.code = this.code COLLATE NOCASE)
@@ -71,7 +70,7 @@ func (t *Tx) RelationsOf(ctx context.Context, recordID int64) ([]Relation, error
 			SELECT coalesce(e.primary_id, e.id, 0) AS quake, coalesce(upper(s.network), '') AS network, coalesce(upper(s.code), '') AS code
 			FROM record r LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id WHERE r.id = ?1)
 		SELECT quake, network, code, '', 0 FROM this
-		UNION ALL SELECT quake, '', code, x.sha256, 0 FROM this CROSS JOIN component c ON c.record_id = ?1 CROSS JOIN series x ON x.component_id = c.id
+		UNION ALL SELECT quake, '', code, x.sha256, 0 FROM this CROSS JOIN component c ON c.record_id = ?1 CROSS JOIN series x ON x.id = c.series_id
 		UNION ALL SELECT 0, '', '', '', motion_id FROM component WHERE record_id = ?1 AND motion_id IS NOT NULL`, recordID)
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)

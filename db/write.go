@@ -203,26 +203,6 @@ func (t *Tx) putParents(ctx context.Context, r Record) (eventID, stationID *int6
 	return eventID, stationID, nil
 }
 
-// AddRotated stores what was computed of a record's horizontals over all
-// directions. Nothing of that may be stored: see IsUnrotated.
-func (t *Tx) AddRotated(ctx context.Context, recordID, generationID int64, rotd50, rotd100 Spectra) error {
-	if err := t.addSpectra(ctx, recordID, RoleRotD50, generationID, rotd50); err != nil {
-		return err
-	}
-	return t.addSpectra(ctx, recordID, RoleRotD100, generationID, rotd100)
-}
-
-// forgetRotated removes what was computed of both horizontals of a record, in
-// every generation, because one of them is no longer what it was.
-func (t *Tx) forgetRotated(ctx context.Context, recordID int64) error {
-	for _, table := range []string{"spectrum", "measure", "off_grid"} {
-		if err := t.exec(ctx, `DELETE FROM `+table+` WHERE record_id = ? AND role IN ('`+RoleRotD50+`', '`+RoleRotD100+`')`, recordID); err != nil {
-			return fmt.Errorf("forget rotated %s: %w", table, err)
-		}
-	}
-	return nil
-}
-
 // timeText is the store's form of a time, NULL for the zero time.
 func timeText(at time.Time) any {
 	if at.IsZero() {

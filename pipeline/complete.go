@@ -23,7 +23,7 @@ type Recomputed struct {
 // reported, and tried again only under another recipe or version of the steps, or where
 // the store is damaged.
 func (w *writer) complete(ctx context.Context) error {
-	lacking, err := w.store.Unsolved(ctx, w.run.generation.ID)
+	lacking, err := lackingOf(ctx, w, w.store.Unsolved)
 	if err != nil || len(lacking) == 0 {
 		return err
 	}
@@ -33,6 +33,18 @@ func (w *writer) complete(ctx context.Context) error {
 		workers: w.opts.Workers, clock: w.opts.Clock, process: c.process,
 		weigh: func(completed) int { return 1 }, store: c.storeBatch,
 	}.run(ctx, slices.Values(lacking))
+}
+
+// lackingOf lists what the generation lacks that was not computed of equal inputs before.
+func lackingOf[T any](ctx context.Context, w *writer, list func(context.Context, int64) ([]T, error)) ([]T, error) {
+	lacking, err := list(ctx, w.run.generation.ID)
+	if err != nil || len(lacking) == 0 {
+		return nil, err
+	}
+	if err := w.store.Update(ctx, func(tx *db.Tx) error { return tx.Adopt(ctx, w.run.generation.ID) }); err != nil {
+		return nil, err
+	}
+	return list(ctx, w.run.generation.ID)
 }
 
 // completed is a held component with what was computed of it.

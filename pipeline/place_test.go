@@ -218,7 +218,7 @@ func together(t *testing.T, files []delivery) string {
 		res := result{source: db.Source{Path: f.path, SHA256: f.path, Format: "invented"}, rel: f.path, stem: stemOf(f.path), outcome: Stored}
 		for i, c := range f.channels {
 			c.DistanceKM = ingest.Known(float64(f.path[0]))
-			res.channels = append(res.channels, solved{channel: c, samples: 1, digest: f.path, data: []byte{0},
+			res.channels = append(res.channels, solved{channel: c, samples: 1, digest: fmt.Sprint(f.path, i), data: []byte{0},
 				accounts: []account{{by: db.ByHeader, source: f.path, channel: c}},
 				spectra:  db.NewSpectra(nil, map[string]float64{db.MeasurePGA: c.Orientation.AzimuthDeg.Value, db.MeasurePGV: float64(i), db.MeasurePGD: 1}, nil)})
 		}

@@ -33,7 +33,7 @@ type Rotated struct {
 // runs, or before a run that was stopped. A pair that cannot be rotated is
 // reported and left alone. With SkipRotation those that can be are counted.
 func (w *writer) rotate(ctx context.Context) error {
-	pairs, err := w.store.Unrotated(ctx, w.run.generation.ID)
+	pairs, err := lackingOf(ctx, w, w.store.Unrotated)
 	if err != nil {
 		return err
 	}

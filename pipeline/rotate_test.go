@@ -5,6 +5,7 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+	"hash/crc32"
 	"path/filepath"
 	"reflect"
 	"slices"
@@ -21,7 +22,7 @@ import (
 func measures(t *testing.T, store *db.Store) (out []string) {
 	t.Helper()
 	client := client(t, store)
-	rows, err := client.QueryContext(t.Context(), `SELECT r.code, m.role, m.name, m.value FROM measure m JOIN record r ON r.id = m.record_id ORDER BY 1, 2, 3`)
+	rows, err := client.QueryContext(t.Context(), `SELECT r.code, k.role, m.name, m.value FROM measure m JOIN computed k ON k.computation_id = m.computation_id JOIN record r ON r.id = k.record_id ORDER BY 1, 2, 3`)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -65,8 +66,9 @@ func rotated(t *testing.T, store *db.Store) []string {
 // horizontals writes two horizontals of a station, 000 and what else is asked.
 func horizontals(t *testing.T, dir, station, other string, stepS float64, n int) {
 	t.Helper()
-	put(t, dir, station+"_000.AT2", at2("Invented", station, "000", 11))
-	put(t, dir, station+"_other.AT2", at2Of("Invented", station, other, stepS, n, 12))
+	seed := 2 * uint64(crc32.ChecksumIEEE([]byte(station))) // stations have other motions
+	put(t, dir, station+"_000.AT2", at2("Invented", station, "000", seed))
+	put(t, dir, station+"_other.AT2", at2Of("Invented", station, other, stepS, n, seed+1))
 }
 
 // reasons runs the pipeline and returns beside the summary what was said of each

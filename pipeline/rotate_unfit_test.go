@@ -21,8 +21,8 @@ func TestPairsThatCannotBeRotated(t *testing.T) {
 	opts.SkipRotation = true
 	run(t, store, opts)
 	for station, damage := range map[string]string{
-		"damaged": `UPDATE series SET data = substr(data, 1, 40) WHERE component_id = (SELECT c.id FROM component c JOIN record r ON r.id = c.record_id WHERE r.code GLOB ? AND c.role = 'h2')`,
-		"cut":     `DELETE FROM spectrum WHERE damping_position = 1 AND role = 'h1' AND record_id = (SELECT id FROM record WHERE code GLOB ?)`,
+		"damaged": `UPDATE series SET data = substr(data, 1, 40) WHERE id = (SELECT c.series_id FROM component c JOIN record r ON r.id = c.record_id WHERE r.code GLOB ? AND c.role = 'h2')`,
+		"cut":     `DELETE FROM spectrum WHERE id = (SELECT 256 * k.computation_id + 1 FROM computed k JOIN record r ON r.id = k.record_id WHERE k.role = 'h1' AND r.code GLOB ?)`,
 	} {
 		if _, err := client(t, store).ExecContext(t.Context(), damage, "*"+station); err != nil {
 			t.Fatal(err)

@@ -65,12 +65,10 @@ func (s *source) compute(ctx context.Context, o *ordinates, motions []motion, ou
 	})
 }
 
-// computed is the SD in m, one an oscillator, of a record and role, and what it was
-// computed of.
+// computed is the SD in m, one an oscillator, of a record and role.
 type computed struct {
 	recordID int64
 	role     string
-	of       []db.Origin
 	sd       []float64
 	isFirst  bool // of the motion's spectra
 }
@@ -79,14 +77,14 @@ type computed struct {
 // of the rotated pair at once.
 func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot, m *motion, put func(*computed)) error {
 	if m.isRotated() {
-		sd, of, err := m.rotatedSD(ctx, snapshot, solvers)
+		sd, err := m.rotatedSD(ctx, snapshot, solvers)
 		if err == nil {
-			put(&computed{m.members[0].RecordID, m.role, of, sd, true})
+			put(&computed{m.members[0].RecordID, m.role, sd, true})
 		}
 		return err
 	}
 	for k, c := range m.members {
-		conditioned, origin, err := readConditioned(ctx, snapshot, c)
+		conditioned, err := readConditioned(ctx, snapshot, c)
 		if err != nil {
 			return err
 		}
@@ -94,27 +92,27 @@ func solve(ctx context.Context, solvers *spectrum.Solvers, snapshot *db.Snapshot
 		if err != nil {
 			return err
 		}
-		put(&computed{c.RecordID, c.Role, []db.Origin{origin}, solver.SD(nil, conditioned.Acceleration), k == 0})
+		put(&computed{c.RecordID, c.Role, solver.SD(nil, conditioned.Acceleration), k == 0})
 	}
 	return nil
 }
 
 // readConditioned reads a component's motion and carries out the recipe of the
 // generation, as was done before its stored spectra were computed.
-func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldComponent) (condition.Conditioned, db.Origin, error) {
+func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldComponent) (condition.Conditioned, error) {
 	recipe, err := condition.FromCanonical(snapshot.Generation.Recipe.Steps)
 	if err != nil {
-		return condition.Conditioned{}, db.Origin{}, err
+		return condition.Conditioned{}, err
 	}
-	delivered, origin, err := snapshot.Motion(ctx, c.RecordID, c.Role)
+	delivered, err := snapshot.Motion(ctx, c.RecordID, c.Role)
 	if err != nil {
-		return condition.Conditioned{}, origin, err
+		return condition.Conditioned{}, err
 	}
 	out, err := recipe.Apply(condition.Component(delivered))
 	if err != nil {
-		return out, origin, fmt.Errorf("%w: %w", errUnconditioned, err)
+		return out, fmt.Errorf("%w: %w", errUnconditioned, err)
 	}
-	return out, origin, nil
+	return out, nil
 }
 
 // errUnconditioned is of components on which the recipe cannot be carried out.

@@ -9,8 +9,8 @@ import (
 	"swaybook/db"
 )
 
-const cutSeries = `UPDATE series SET data = substr(data, 1, 20) WHERE component_id IN
-	(SELECT c.id FROM component c JOIN record r ON r.id = c.record_id WHERE r.code = ? AND c.role = 'h2')`
+const cutSeries = `UPDATE series SET data = substr(data, 1, 20) WHERE id IN
+	(SELECT c.series_id FROM component c JOIN record r ON r.id = c.record_id WHERE r.code = ? AND c.role = 'h2')`
 
 // TestDamagedSamplesAreLeftOut: a series that is damaged stops no question about
 // other records, and its own record is left out with the reason where it is needed.
@@ -108,7 +108,7 @@ func TestDamagedAnswers(t *testing.T) {
 // TestDamagedSpectraAreLeftOut: so are spectra that are cut or garbled, and those that
 // are not there, which ingest computes again.
 func TestDamagedSpectraAreLeftOut(t *testing.T) {
-	const where = ` WHERE role = ? AND damping_position = 0 AND record_id = (SELECT id FROM record WHERE code = 'R2')`
+	const where = ` WHERE id = (SELECT 256 * k.computation_id FROM computed k JOIN record r ON r.id = k.record_id WHERE k.role = ? AND r.code = 'R2')`
 	for name, damage := range map[string]string{
 		"cut":     `UPDATE spectrum SET sd_m = substr(sd_m, 1, 30)` + where,
 		"garbled": `UPDATE spectrum SET sd_m = CAST(replace(CAST(sd_m AS TEXT), 'e', 'x') AS BLOB)` + where,
@@ -117,10 +117,7 @@ func TestDamagedSpectraAreLeftOut(t *testing.T) {
 		t.Run(name, func(t *testing.T) {
 			store := newStore(t, handGrid, handRecords())
 			alter(t, store, damage, db.RoleH2)
-			reason := reasonDamaged
-			if name == "gone" {
-				reason = "not computed by recipe as-delivered: run ingest --recipe with it"
-			}
+			const reason = "damaged in the store"
 			for component, spectra := range map[Component]int{ComponentGeomean: 2, ComponentH2: 2, ComponentEach: 6} {
 				r := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Component: component}, Damping: 0.02}).Selection
 				if r.Spectra != spectra || !slices.Contains(r.LeftOut, LeftOut{reason, 1}) {
@@ -136,7 +133,8 @@ func TestDamagedSpectraAreLeftOut(t *testing.T) {
 func TestLostPeaksAreLeftOut(t *testing.T) {
 	for _, role := range []string{db.RoleH2, db.RoleRotD50} {
 		store := newStore(t, handGrid, handRecords())
-		alter(t, store, `DELETE FROM measure WHERE name = 'pgv_m_s' AND role = ? AND record_id = (SELECT id FROM record WHERE code = 'R2')`, role)
+		alter(t, store, `DELETE FROM measure WHERE name = 'pgv_m_s' AND computation_id = (
+			SELECT k.computation_id FROM computed k JOIN record r ON r.id = k.record_id WHERE k.role = ? AND r.code = 'R2')`, role)
 		list, err := RecordsQuestion{Selection{Component: Component(role)}}.Ask(t.Context(), store)
 		if err != nil || !slices.Contains(list.Selection.LeftOut, LeftOut{"damaged in the store", 1}) {
 			t.Errorf("%s: list %+v, %v", role, list.Selection, err)

@@ -251,7 +251,7 @@ func (k *keeper) add(ctx context.Context, c *computed) {
 	if k.isOff {
 		return
 	}
-	k.rows = append(k.rows, db.OffGridRow{RecordID: c.recordID, Role: c.role, Of: c.of, Blocks: k.blocks, SD: c.sd})
+	k.rows = append(k.rows, db.OffGridRow{RecordID: c.recordID, Role: c.role, Blocks: k.blocks, SD: c.sd})
 	if k.values += len(c.sd); k.values >= keeperValues {
 		k.flush(ctx)
 	}

@@ -19,11 +19,15 @@ const cutAll = `UPDATE series SET data = substr(data, 1, 20)`
 func keptRecords() []inventedRecord {
 	one := pulses("one", inventedComponent{peak: 2, level: 1}, inventedComponent{level: 1})
 	one.components = append(one.components, inventedComponent{role: db.RoleV, peak: 0.5, level: 1})
-	return []inventedRecord{
+	out := []inventedRecord{
 		one,
 		pulses("other", inventedComponent{peak: 3, stepS: 0.005, level: 1}, inventedComponent{stepS: 0.005, level: 1}),
 		pulses("third", inventedComponent{level: 1}, inventedComponent{peak: 5, level: 1}),
 	}
+	for i := range out {
+		out[i].unrotated = false
+	}
+	return out
 }
 
 type answerText interface {
@@ -125,8 +129,8 @@ func TestKeptOrdinatesComplete(t *testing.T) {
 		}
 		addRecord(t, store, records[2])
 		alter(t, store, `INSERT INTO off_grid_block (generation_id, oscillators) SELECT generation_id, oscillators FROM off_grid_block`)
-		alter(t, store, `UPDATE off_grid SET sd_m = substr(sd_m, 1, 7) WHERE record_id = 1 AND role <> 'v'`)
-		alter(t, store, `UPDATE series SET data = substr(data, 1, 20) WHERE component_id IN (SELECT id FROM component WHERE record_id = 2)`)
+		alter(t, store, `UPDATE off_grid SET sd_m = substr(sd_m, 1, 7) WHERE computation_id IN (SELECT computation_id FROM computed WHERE record_id = 1 AND role <> 'v')`)
+		alter(t, store, `UPDATE series SET data = substr(data, 1, 20) WHERE id IN (SELECT series_id FROM component WHERE record_id = 2)`)
 		for name, ask := range keptQuestions {
 			if got := askText(t, store, ask); got != whole[name] {
 				t.Errorf("%s:\n%s\nwant\n%s", name, got, whole[name])

@@ -43,23 +43,22 @@ func notRotatable(first, second *db.HeldComponent) string {
 	return ""
 }
 
-// readPair reads two horizontals that can be rotated and makes them fit for it, at steps
-// of stepS.
-func readPair(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (p spectrum.Pair, stepS float64, of []db.Origin, err error) {
+// pairSamples reads two horizontals that can be rotated and makes them fit for
+// it, at steps of stepS.
+func pairSamples(ctx context.Context, snapshot *db.Snapshot, first, second *db.HeldComponent) (p spectrum.Pair, stepS float64, err error) {
 	relation, err := between(first, second)
 	if err != nil {
-		return p, 0, nil, err
+		return p, 0, err
 	}
-	a, originA, err := readConditioned(ctx, snapshot, first)
+	a, err := readConditioned(ctx, snapshot, first)
 	if err != nil {
-		return p, 0, nil, err
+		return p, 0, err
 	}
-	b, originB, err := readConditioned(ctx, snapshot, second)
+	b, err := readConditioned(ctx, snapshot, second)
 	if err != nil {
-		return p, 0, nil, err
+		return p, 0, err
 	}
-	p = spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b)+relation.Later(a.StepS), relation.Deg)
-	return p, a.StepS, []db.Origin{originA, originB}, nil
+	return spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b)+relation.Later(a.StepS), relation.Deg), a.StepS, nil
 }
 
 // findRotated notes peaks of rotated pairs. For ComponentAll these are all that
@@ -134,7 +133,7 @@ func (p *picker) mayTake(m *motion) (bool, error) {
 
 // computePeaks is of a rotated motion.
 func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (*spectrum.GroundPeaks, error) {
-	p, stepS, _, err := readPair(ctx, snapshot, m.members[0], m.members[1])
+	p, stepS, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
 	if err != nil {
 		return nil, fmt.Errorf("compute peaks of %s %s: %w", m.record(), m.role, err)
 	}
@@ -145,19 +144,19 @@ func (m *motion) computePeaks(ctx context.Context, snapshot *db.Snapshot) (*spec
 	return &median, nil
 }
 
-// rotatedSD is the SD of a rotated motion, and what it is computed of.
-func (m *motion) rotatedSD(ctx context.Context, snapshot *db.Snapshot, solvers *spectrum.Solvers) (sd []float64, of []db.Origin, err error) {
-	p, stepS, of, err := readPair(ctx, snapshot, m.members[0], m.members[1])
+// rotatedSD is the SD of a rotated motion.
+func (m *motion) rotatedSD(ctx context.Context, snapshot *db.Snapshot, solvers *spectrum.Solvers) ([]float64, error) {
+	p, stepS, err := pairSamples(ctx, snapshot, m.members[0], m.members[1])
 	if err != nil {
-		return nil, nil, err
+		return nil, err
 	}
 	solver, err := solvers.Get(stepS)
 	if err != nil {
-		return nil, nil, err
+		return nil, err
 	}
 	median, maximum := solver.RotD(p.A, p.B, solver.SD(nil, p.A), solver.SD(nil, p.B))
 	if Component(m.role) == ComponentRotD100 {
-		return maximum, of, nil
+		return maximum, nil
 	}
-	return median, of, nil
+	return median, nil
 }
