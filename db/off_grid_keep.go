@@ -4,6 +4,8 @@ import (
 	"context"
 	"errors"
 	"fmt"
+
+	sqlite3 "modernc.org/sqlite/lib"
 )
 
 // OffGridRow is the SD in m of one record and role, of all oscillators of some blocks one
@@ -11,13 +13,15 @@ import (
 type OffGridRow struct {
 	RecordID int64
 	Role     string
-	Blocks   []OffGridBlock
 	SD       []float64
 }
 
-// offGridBytes bounds what is kept: a thousand records beside more than a hundred
-// thousand oscillators.
-const offGridBytes = 1 << 30
+// What is kept is bounded: a thousand records beside more than a hundred thousand
+// oscillators. A row takes some 32 bytes beside its values.
+const (
+	offGridBytes   = 1 << 30
+	offGridRowCost = 4 // in values
+)
 
 // Unkept says why something that was computed could not be kept for later questions; nil
 // where all was.
@@ -30,15 +34,16 @@ func (s *Store) Unkept() error {
 // keep is Update of a store that may be open for reading, for what spares later questions
 // work and can as well not be stored. It reports whether it is.
 func (s *Store) keep(ctx context.Context, f func(*Tx) error) bool {
+	if s.Unkept() != nil {
+		return false // it would wait in vain again
+	}
 	err := errors.New("the store may not be written to")
 	if s.aside != nil {
-		err = explain(transact(ctx, s.aside, f))
+		err = transact(ctx, s.aside, f)
 	}
 	s.mutex.Lock()
 	defer s.mutex.Unlock()
-	if err != nil && s.unkept == nil && ctx.Err() == nil {
-		s.unkept = err
-	}
+	s.unkept = err
 	return err == nil
 }
 
@@ -110,14 +115,14 @@ func (b *OffGridBlock) encode() []byte {
 // KeepOffGrid stores ordinates off the grid for later questions, beside the computations
 // that the records' roles have in the snapshot: of pairs that are not rotated there is
 // none, and nothing is kept. It reports whether it could: see Store.Unkept.
-func (s *Snapshot) KeepOffGrid(ctx context.Context, rows []OffGridRow) bool {
+func (s *Snapshot) KeepOffGrid(ctx context.Context, blocks []OffGridBlock, rows []OffGridRow) bool {
 	return s.store.keep(ctx, func(t *Tx) error {
 		kept := map[int64]int{}
 		for i := range rows {
 			of, err := idOf(ctx, s.tx, `SELECT computation_id FROM computed WHERE record_id = ? AND role = ? AND generation_id = ?`,
 				rows[i].RecordID, rows[i].Role, s.Generation.ID)
 			if err == nil && of != 0 {
-				err = t.keepOffGrid(ctx, of, &rows[i], kept)
+				err = t.keepOffGrid(ctx, of, blocks, rows[i].SD, kept)
 			}
 			if err != nil {
 				return err
@@ -132,19 +137,24 @@ func (s *Snapshot) KeepOffGrid(ctx context.Context, rows []OffGridRow) bool {
 	})
 }
 
-// keepOffGrid adds to kept the values by block.
-func (t *Tx) keepOffGrid(ctx context.Context, computationID int64, r *OffGridRow, kept map[int64]int) error {
-	rest := r.SD
+// keepOffGrid adds to kept, by block, the values and what their row costs.
+func (t *Tx) keepOffGrid(ctx context.Context, computationID int64, blocks []OffGridBlock, sd []float64, kept map[int64]int) error {
 	var data []byte
-	for i := range r.Blocks {
-		b := &r.Blocks[i]
-		data = sealDoubles(data[:0], rest[:len(b.Oscillators)])
-		rest = rest[len(b.Oscillators):]
-		err := t.exec(ctx, `INSERT OR REPLACE INTO off_grid (computation_id, block_id, sd_m) VALUES (?, ?, ?)`, computationID, b.ID, data)
+	for i := range blocks {
+		b := &blocks[i]
+		data = sealDoubles(data[:0], sd[:len(b.Oscillators)])
+		sd = sd[len(b.Oscillators):]
+		r, err := t.tx.ExecContext(ctx, `INSERT INTO off_grid (computation_id, block_id, sd_m) VALUES (?, ?, ?)
+			ON CONFLICT DO UPDATE SET sd_m = excluded.sd_m WHERE sd_m <> excluded.sd_m`, computationID, b.ID, data)
+		if codeOf(err) == sqlite3.SQLITE_CONSTRAINT {
+			return errors.New("another process has made room for other ordinates")
+		}
 		if err != nil {
 			return fmt.Errorf("keep ordinates: %w", err)
 		}
-		kept[b.ID] += len(b.Oscillators)
+		if n, err := r.RowsAffected(); err == nil && n > 0 {
+			kept[b.ID] += len(b.Oscillators) + offGridRowCost
+		}
 	}
 	return nil
 }

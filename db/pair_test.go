@@ -169,7 +169,7 @@ func TestDecodeNamesWhatIsDamaged(t *testing.T) {
 	s, g := pairStore(t)
 	for _, damage := range []string{
 		`UPDATE component SET series_id = NULL WHERE id = 4`,
-		`UPDATE spectrum SET sd_m = substr(sd_m, 2) WHERE id = 1 + (SELECT `+firstSpectrum+` FROM computed k WHERE record_id = 2 AND role = 'h2')`,
+		`UPDATE spectrum SET sd_m = substr(sd_m, 2) WHERE id = 1 + (SELECT ` + firstSpectrum + ` FROM computed k WHERE record_id = 2 AND role = 'h2')`,
 	} {
 		if _, err := s.write.ExecContext(t.Context(), damage); err != nil {
 			t.Fatal(err)

@@ -252,7 +252,7 @@ func explain(err error) error {
 		return fmt.Errorf("the file is not a swaybook store: %w", err)
 	case strings.Contains(text, "unable to open database file"):
 		return fmt.Errorf("the file or its folder cannot be opened: %w", err)
-	case strings.Contains(text, "database is locked"):
+	case isBusy(err):
 		return fmt.Errorf("another process is writing to the store: %w", err)
 	case strings.Contains(text, "readonly database"):
 		return fmt.Errorf("the file or its folder may not be written to: %w", err)

@@ -23,10 +23,11 @@ func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 	return transact(ctx, s.write, f)
 }
 
-func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) error {
+func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) (err error) {
+	defer func() { err = explain(err) }()
 	tx, err := write.BeginTx(ctx, nil)
 	if err != nil {
-		return fmt.Errorf("begin transaction: %w", explain(err))
+		return fmt.Errorf("begin transaction: %w", err)
 	}
 	defer tx.Rollback()
 	if err := f(&Tx{tx: newSession(tx)}); err != nil {

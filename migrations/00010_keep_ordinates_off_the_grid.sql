@@ -1,6 +1,7 @@
 -- SD in m of oscillators off the grid, kept from the first question that needed them.
 -- A block is a list of oscillators, each a period in s and a damping ratio, as
--- little-endian doubles. kept counts the values that were kept of it. An id is never
+-- little-endian doubles. kept counts the values that were kept of it, and four more a
+-- row. An id is never
 -- given twice, so that no value can be taken for that of another oscillator.
 CREATE TABLE off_grid_block (
     id            INTEGER PRIMARY KEY AUTOINCREMENT,

@@ -13,7 +13,7 @@ import (
 // task is to compute oscillators.
 type task struct {
 	oscillators []spectrum.Oscillator
-	positions   []int   // of each among the ordinates, -1 for one that is kept only
+	positions   []int   // of each among the ordinates
 	keeper      *keeper // nil where nothing is kept
 }
 

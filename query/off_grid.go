@@ -5,22 +5,55 @@ import (
 	"context"
 	"maps"
 	"slices"
-	"sync"
 
 	"swaybook/db"
 	"swaybook/pipeline/spectrum"
 )
 
-// block is a block of the store, and the position among the ordinates of each of its
-// oscillators, -1 for one that nobody asked for.
-type block struct {
-	db.OffGridBlock
-	positions []int
+// wanted are the oscillators off the grid that are asked for, each once.
+type wanted struct {
+	oscillators []db.Oscillator
+	positions   []int // of each among the ordinates
+	at          map[db.Oscillator]int
+	twins       map[int]int // positions of those that come again, to that of the first
 }
 
-// blockOscillators is how many oscillators a block has at most. What is read and written
-// costs by the row; what is computed of records that are new to a block, by all of its
-// oscillators.
+func newWanted(o *ordinates, positions []int) *wanted {
+	w := &wanted{at: map[db.Oscillator]int{}, twins: map[int]int{}}
+	for _, p := range positions {
+		oscillator := db.Oscillator(o.oscillators[p])
+		if first, ok := w.at[oscillator]; ok {
+			w.twins[p] = w.positions[first]
+			continue
+		}
+		w.at[oscillator] = len(w.oscillators)
+		w.oscillators, w.positions = append(w.oscillators, oscillator), append(w.positions, p)
+	}
+	return w
+}
+
+// block is a block of the store, and of each of its oscillators the number among those
+// that are wanted, -1 for another.
+type block struct {
+	db.OffGridBlock
+	numbers []int
+}
+
+// newBlock reports beside the block whether any of it is wanted.
+func (w *wanted) newBlock(of db.OffGridBlock) (b *block, isAny bool) {
+	b = &block{of, make([]int, len(of.Oscillators))}
+	for i, oscillator := range of.Oscillators {
+		k, ok := w.at[oscillator]
+		if !ok {
+			k = -1
+		}
+		b.numbers[i], isAny = k, isAny || ok
+	}
+	return b, isAny
+}
+
+// blockOscillators is how many oscillators a block has at most: what is read and written
+// costs by the row.
 const blockOscillators = 64
 
 // offGrid fills in oscillators off the grid, given by position: kept ones from the store,
@@ -32,139 +65,156 @@ func (s *source) offGrid(ctx context.Context, o *ordinates, motions []motion, ou
 	if len(missing) == 0 {
 		return nil
 	}
-	places, twins := placesOf(o, missing)
-	known, fresh, err := s.blocks(ctx, places)
+	w := newWanted(o, missing)
+	held, err := s.snapshot.OffGridBlocks(ctx)
 	if err != nil {
 		return err
 	}
-	lacking, err := s.readKept(ctx, o, motions, known)
+	var known []*block
+	for _, h := range held {
+		if b, isAny := w.newBlock(h); isAny && len(b.numbers) <= blockOscillators {
+			known = append(known, b)
+		}
+	}
+	found, err := s.readKept(ctx, o, motions, w, known)
 	if err != nil {
 		return err
 	}
-	if err := s.computeBlocks(ctx, o, motions, out, known, fresh, lacking); err != nil {
-		return err
+	for _, l := range found.lacks() {
+		blocks := w.cover(l.numbers, known)
+		if err := s.computeBlocks(ctx, o, motions, out, w, l.motions, blocks); err != nil {
+			return err
+		}
+		known = append(known, blocks...) // for the next, to which they may be new
 	}
-	for twin, position := range twins {
+	for twin, position := range w.twins {
 		copy(o.at(twin), o.at(position))
 	}
 	return nil
 }
 
-// placesOf gives the position of each oscillator among those of these positions, and of
-// those that come again that of the first.
-func placesOf(o *ordinates, positions []int) (places map[db.Oscillator]int, twins map[int]int) {
-	places, twins = map[db.Oscillator]int{}, map[int]int{}
-	for _, p := range positions {
-		oscillator := db.Oscillator(o.oscillators[p])
-		if first, ok := places[oscillator]; ok {
-			twins[p] = first
-		} else {
-			places[oscillator] = p
-		}
-	}
-	return places, twins
+// kept notes what was found: of motion i the oscillator of number k in have[i·n + k], a
+// bit for each spectrum that the motion is made of.
+type kept struct {
+	have  []uint8
+	n     int
+	whole []uint8 // all bits, by motion
 }
 
-// blocks returns the store's blocks that hold any of the oscillators, and new ones, without
-// id, of the others.
-func (s *source) blocks(ctx context.Context, places map[db.Oscillator]int) (known, fresh []block, err error) {
-	held, err := s.snapshot.OffGridBlocks(ctx)
-	if err != nil {
-		return nil, nil, err
-	}
-	rest := maps.Clone(places)
-	for _, h := range held {
-		if b, isWanted := place(h, rest); isWanted {
-			known = append(known, b)
-		}
-	}
-	left := slices.SortedFunc(maps.Keys(rest), func(a, b db.Oscillator) int {
-		return cmp.Or(cmp.Compare(a.Damping, b.Damping), cmp.Compare(a.PeriodS, b.PeriodS))
-	})
-	for list := range slices.Chunk(left, blockOscillators) {
-		b, _ := place(db.OffGridBlock{Oscillators: list}, rest)
-		fresh = append(fresh, b)
-	}
-	return known, fresh, nil
-}
-
-// place takes the places of the block's oscillators out of the rest.
-func place(held db.OffGridBlock, rest map[db.Oscillator]int) (b block, isWanted bool) {
-	b = block{held, make([]int, len(held.Oscillators))}
-	for i, oscillator := range held.Oscillators {
-		b.positions[i] = -1
-		if p, ok := rest[oscillator]; ok {
-			b.positions[i], isWanted = p, true
-			delete(rest, oscillator)
-		}
-	}
-	return b, isWanted
-}
-
-// readKept fills in what the store has kept of the blocks, and returns the positions of
-// the motions of which it lacks something.
-func (s *source) readKept(ctx context.Context, o *ordinates, motions []motion, known []block) (lacking []int, err error) {
-	if len(known) == 0 {
-		return nil, nil
+// readKept fills in what the store has kept of the known blocks.
+func (s *source) readKept(ctx context.Context, o *ordinates, motions []motion, w *wanted, known []*block) (*kept, error) {
+	found := &kept{n: len(w.oscillators), have: make([]uint8, len(motions)*len(w.oscillators)), whole: make([]uint8, len(motions))}
+	for i := range motions {
+		found.whole[i] = 1<<motions[i].spectra() - 1
 	}
 	ids, byID := make([]int64, len(known)), map[int64]*block{}
-	for i := range known {
-		ids[i], byID[known[i].ID] = known[i].ID, &known[i]
+	for i, b := range known {
+		ids[i], byID[b.ID] = b.ID, b
 	}
-	isLacking := make([]bool, len(motions))
+	if len(known) == 0 {
+		return found, nil
+	}
 	parts := partsByRole(motions)
 	var values [blockOscillators]float64
+	var positions [blockOscillators]int
 	for _, role := range slices.Sorted(maps.Keys(parts)) {
-		records, byRecord, found := make([]int64, len(parts[role])), map[int64]*part{}, map[int64]int{}
+		records, byRecord := make([]int64, len(parts[role])), map[int64]*part{}
 		for i := range parts[role] {
 			p := &parts[role][i]
 			records[i], byRecord[p.recordID] = p.recordID, p
 		}
 		err := s.snapshot.OffGrid(ctx, role, records, ids, func(recordID, blockID int64, sd db.OffGridSD) error {
 			b, p := byID[blockID], byRecord[recordID]
-			if len(b.positions) <= len(values) && sd.Decode(values[:len(b.positions)]) == nil {
-				o.put(p.motion, &motions[p.motion], p.isFirst, b.positions, values[:len(b.positions)])
-				found[recordID]++
+			if n := len(b.numbers); sd.Decode(values[:n]) == nil {
+				found.note(p, b.numbers, w.positions, positions[:n])
+				o.put(p.motion, &motions[p.motion], p.isFirst, positions[:n], values[:n])
 			}
 			return nil
 		})
 		if err != nil {
 			return nil, err
 		}
-		for id, p := range byRecord {
-			isLacking[p.motion] = isLacking[p.motion] || found[id] < len(known)
-		}
 	}
-	for i := range isLacking {
-		if isLacking[i] {
-			lacking = append(lacking, i)
-		}
-	}
-	return lacking, nil
+	return found, nil
 }
 
-// computeBlocks computes the known blocks of the motions that lack one, the fresh blocks
-// of all, and keeps both.
-func (s *source) computeBlocks(ctx context.Context, o *ordinates, motions []motion, out *unfit, known, fresh []block, lacking []int) error {
-	if len(lacking)+len(fresh) == 0 {
-		return nil
+// note takes down what a row has of a part, and sets into to the positions of what no
+// other had, -1 elsewhere.
+func (f *kept) note(p *part, numbers, positions, into []int) {
+	bit := uint8(2)
+	if p.isFirst {
+		bit = 1
 	}
-	others := slices.DeleteFunc(upTo(len(motions)), func(i int) bool {
-		_, isLacking := slices.BinarySearch(lacking, i)
-		return isLacking
+	have := f.have[p.motion*f.n : (p.motion+1)*f.n]
+	for i, k := range numbers {
+		into[i] = -1
+		if k >= 0 && have[k]&bit == 0 {
+			have[k] |= bit
+			into[i] = positions[k]
+		}
+	}
+}
+
+// lack is the numbers of oscillators that some motions lack.
+type lack struct {
+	motions, numbers []int
+}
+
+// lacks lists what is not whole, motions that lack the same together.
+func (f *kept) lacks() (out []*lack) {
+	same := map[string]*lack{}
+	bits := make([]byte, (f.n+7)/8)
+	for i := range f.whole {
+		clear(bits)
+		var numbers []int
+		for k, have := range f.have[i*f.n : (i+1)*f.n] {
+			if have != f.whole[i] {
+				bits[k/8] |= 1 << (k % 8)
+				numbers = append(numbers, k)
+			}
+		}
+		if len(numbers) == 0 {
+			continue
+		}
+		l, ok := same[string(bits)]
+		if !ok {
+			l = &lack{numbers: numbers}
+			same[string(bits)] = l
+			out = append(out, l)
+		}
+		l.motions = append(l.motions, i)
+	}
+	return out
+}
+
+// cover returns blocks of just these oscillators: known ones as far as they hold no other,
+// and new ones, without id.
+func (w *wanted) cover(numbers []int, known []*block) (blocks []*block) {
+	rest := make(map[int]bool, len(numbers))
+	for _, k := range numbers {
+		rest[k] = true
+	}
+	for _, b := range known {
+		if slices.ContainsFunc(b.numbers, func(k int) bool { return !rest[k] }) {
+			continue
+		}
+		blocks = append(blocks, b)
+		for _, k := range b.numbers {
+			delete(rest, k)
+		}
+	}
+	left := slices.SortedFunc(maps.Keys(rest), func(a, b int) int {
+		x, y := w.oscillators[a], w.oscillators[b]
+		return cmp.Or(cmp.Compare(x.Damping, y.Damping), cmp.Compare(x.PeriodS, y.PeriodS))
 	})
-	both, values := slices.Concat(known, fresh), 0
-	for i := range motions {
-		values += motions[i].spectra() * oscillatorsOf(fresh)
+	for list := range slices.Chunk(left, blockOscillators) {
+		b := &block{numbers: list}
+		for _, k := range list {
+			b.Oscillators = append(b.Oscillators, w.oscillators[k])
+		}
+		blocks = append(blocks, b)
 	}
-	for _, i := range lacking {
-		values += motions[i].spectra() * oscillatorsOf(known)
-	}
-	isKept := s.reserve(ctx, both[:len(known)], both[len(known):], values)
-	if err := s.computeTask(ctx, o, motions, out, lacking, s.taskOf(both, isKept)); err != nil {
-		return err
-	}
-	return s.computeTask(ctx, o, motions, out, others, s.taskOf(both[len(known):], isKept))
+	return blocks
 }
 
 // spectra is the number of spectra that the motion is made of.
@@ -175,92 +225,19 @@ func (m *motion) spectra() int {
 	return len(m.members)
 }
 
-func oscillatorsOf(blocks []block) (n int) {
-	for i := range blocks {
-		n += len(blocks[i].Oscillators)
-	}
-	return n
-}
-
-// reserve gives the fresh blocks their ids, and reports whether they can be kept.
-func (s *source) reserve(ctx context.Context, known, fresh []block, values int) bool {
-	held, lists := make([]db.OffGridBlock, len(known)), make([][]db.Oscillator, len(fresh))
-	for i := range known {
-		held[i] = known[i].OffGridBlock
-	}
-	for i := range fresh {
-		lists[i] = fresh[i].Oscillators
-	}
-	reserved, ok := s.snapshot.ReserveOffGrid(ctx, held, lists, values)
-	for i := range reserved {
-		fresh[i].OffGridBlock = reserved[i]
-	}
-	return ok
-}
-
-// taskOf is to compute all oscillators of the blocks, or those that are asked for where
-// nothing is kept.
-func (s *source) taskOf(blocks []block, isKept bool) *task {
-	t := &task{}
-	for i := range blocks {
-		for k, p := range blocks[i].positions {
-			if isKept || p >= 0 {
-				t.oscillators = append(t.oscillators, spectrum.Oscillator(blocks[i].Oscillators[k]))
-				t.positions = append(t.positions, p)
-			}
+// computeBlocks computes the blocks of some motions, and keeps them.
+func (s *source) computeBlocks(ctx context.Context, o *ordinates, motions []motion, out *unfit, w *wanted, which []int, blocks []*block) error {
+	t := &task{keeper: &keeper{snapshot: s.snapshot, blocks: blocks}}
+	for _, b := range blocks {
+		for i, k := range b.numbers {
+			t.oscillators = append(t.oscillators, spectrum.Oscillator(b.Oscillators[i]))
+			t.positions = append(t.positions, w.positions[k])
 		}
 	}
-	if isKept {
-		t.keeper = &keeper{snapshot: s.snapshot}
-		for i := range blocks {
-			t.keeper.blocks = append(t.keeper.blocks, blocks[i].OffGridBlock)
-		}
+	for _, i := range which {
+		t.keeper.expected += motions[i].spectra() * len(t.oscillators)
 	}
-	return t
-}
-
-// computeTask keeps what the last motions leave in the keeper's hand, too.
-func (s *source) computeTask(ctx context.Context, o *ordinates, motions []motion, out *unfit, which []int, t *task) error {
-	if err := s.compute(ctx, o, motions, out, which, t); err != nil {
-		return err
-	}
-	if t.keeper != nil {
-		t.keeper.mutex.Lock()
-		defer t.keeper.mutex.Unlock()
-		t.keeper.flush(ctx)
-	}
-	return ctx.Err()
-}
-
-// keeper stores rows of ordinates, many at a time. It is safe for concurrent use.
-type keeper struct {
-	snapshot *db.Snapshot
-	blocks   []db.OffGridBlock
-	mutex    sync.Mutex
-	rows     []db.OffGridRow
-	values   int
-	isOff    bool // after the first that could not be stored
-}
-
-// keeperValues is how many values wait at most: 8 MB.
-const keeperValues = 1 << 20
-
-func (k *keeper) add(ctx context.Context, c *computed) {
-	k.mutex.Lock()
-	defer k.mutex.Unlock()
-	if k.isOff {
-		return
-	}
-	k.rows = append(k.rows, db.OffGridRow{RecordID: c.recordID, Role: c.role, Blocks: k.blocks, SD: c.sd})
-	if k.values += len(c.sd); k.values >= keeperValues {
-		k.flush(ctx)
-	}
-}
-
-// flush is for those who hold the mutex.
-func (k *keeper) flush(ctx context.Context) {
-	if len(k.rows) > 0 {
-		k.isOff = !k.snapshot.KeepOffGrid(ctx, k.rows)
-	}
-	k.rows, k.values = nil, 0
+	err := s.compute(ctx, o, motions, out, which, t)
+	t.keeper.close(ctx)
+	return err
 }

@@ -201,3 +201,39 @@ func TestOscillatorsThatComeAgain(t *testing.T) {
 		}
 	}
 }
+
+// What nobody asked for is not computed: periods of other questions of one record make no
+// difference to a question of all.
+func TestNothingElseIsComputed(t *testing.T) {
+	store := newStore(t, handGrid, keptRecords())
+	ask := func(where string, periods ...float64) {
+		t.Helper()
+		askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Where: where}, Damping: 0.03, PeriodsS: periods})
+	}
+	var many []float64
+	for i := range 150 {
+		many = append(many, 0.3+0.01*float64(i))
+	}
+	ask(`record == "one"`, many...)
+	ask("", many[3], many[77], many[140])
+	if got, want := keptValues(t, store), 150+2*3; got != want {
+		t.Errorf("%d values kept, want %d", got, want)
+	}
+	ask("", append(many, 2.5)...)
+	if got, want := keptValues(t, store), 3*151; got != want {
+		t.Errorf("%d values kept, want %d", got, want)
+	}
+}
+
+func keptValues(t *testing.T, store *db.Store) (n int) {
+	t.Helper()
+	client, err := sql.Open("sqlite", store.Path())
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer client.Close()
+	if err := client.QueryRowContext(t.Context(), `SELECT sum(length(sd_m) - 4) / 8 FROM off_grid`).Scan(&n); err != nil {
+		t.Fatal(err)
+	}
+	return n
+}

@@ -90,7 +90,7 @@ func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) erro
 	}
 	defer store.Close()
 	err = f(c.Context, store)
-	if why := store.Unkept(); why != nil {
+	if why := store.Unkept(); why != nil && !c.Bool("quiet") {
 		fmt.Fprintf(c.App.ErrWriter, "note: ordinates computed off the grid are not kept for later questions: %v\n", why)
 	}
 	return err
