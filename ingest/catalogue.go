@@ -10,6 +10,8 @@ import (
 	"strings"
 	"sync"
 	"sync/atomic"
+
+	"swaybook/ingest/tomlfile"
 )
 
 // Catalogue is a table of what people know of records and their files cannot or
@@ -59,15 +61,7 @@ type UnknownColumn struct {
 
 // String returns the name and the suggestion.
 func (u UnknownColumn) String() string {
-	return u.Name + didYouMean(u.Suggestion)
-}
-
-// didYouMean is what follows an unknown name for which there is a suggestion.
-func didYouMean(suggestion string) string {
-	if suggestion == "" {
-		return ""
-	}
-	return " (did you mean " + suggestion + "?)"
+	return u.Name + tomlfile.DidYouMean(u.Suggestion)
 }
 
 // catalogueRow is one row. Of its channel only what the row states is set.

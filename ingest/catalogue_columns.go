@@ -6,6 +6,8 @@ import (
 	"slices"
 	"strings"
 	"time"
+
+	"swaybook/ingest/tomlfile"
 )
 
 // scope is what columns speak of, as bits.
@@ -175,39 +177,5 @@ func nearestColumn(name string) string {
 			return known
 		}
 	}
-	return nearest(name, names, len(name)/3)
-}
-
-// nearest returns the first of the names that the fewest edits lead to, at most
-// so many, "" for none.
-func nearest(name string, names []string, most int) string {
-	best, fewest := "", most+1
-	for _, known := range names {
-		if n := editDistance(name, known); n < fewest {
-			best, fewest = known, n
-		}
-	}
-	return best
-}
-
-// editDistance returns the number of bytes to insert, delete or replace that
-// turn a into b (Levenshtein distance).
-func editDistance(a, b string) int {
-	row := make([]int, len(b)+1)
-	for j := range row {
-		row[j] = j
-	}
-	for i := range len(a) {
-		diagonal := row[0]
-		row[0] = i + 1
-		for j := range len(b) {
-			replace := diagonal
-			if a[i] != b[j] {
-				replace++
-			}
-			diagonal = row[j+1]
-			row[j+1] = min(replace, row[j]+1, diagonal+1)
-		}
-	}
-	return row[len(b)]
+	return tomlfile.Nearest(name, names, len(name)/3)
 }

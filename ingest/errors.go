@@ -5,6 +5,8 @@ import (
 	"fmt"
 	"strconv"
 	"strings"
+
+	"swaybook/ingest/tomlfile"
 )
 
 // ParseError says why a file, or one channel of it, was refused. It prints as
@@ -98,11 +100,4 @@ func refuse(line int, field, format string, args ...any) *ParseError {
 }
 
 // Found shortens text from a file to 40 characters for use in a message.
-func found(s string) string {
-	const limit = 40
-	r := []rune(s)
-	if len(r) > limit {
-		return strconv.Quote(string(r[:limit-1]) + "…")
-	}
-	return strconv.Quote(s)
-}
+func found(s string) string { return tomlfile.Quote(s) }

@@ -3,6 +3,8 @@ package ingest
 import (
 	"slices"
 	"strings"
+
+	"swaybook/ingest/tomlfile"
 )
 
 // readFinds reads the patterns on the lines before the numbers.
@@ -10,7 +12,7 @@ func (l *Layout) readFinds(t *tomlTable) {
 	for _, h := range t.tables("header") {
 		f := layoutFind{
 			pattern: h.pattern("pattern"), line: h.whole("line", 1, maxLayoutLine), column: h.whole("column", 1, maxLayoutColumns),
-			optional: h.flag("optional"), at: t.document.line(h.path),
+			optional: h.flag("optional"), at: t.document.Line(h.path),
 		}
 		f.inFile = h.word("in", "file", "channel") == "file"
 		if f.inFile && l.begin == nil {
@@ -52,7 +54,7 @@ func (l *Layout) readGives(h *tomlTable, f *layoutFind) {
 			continue
 		}
 		if !isQuantity(name) {
-			h.fail("pattern", "unknown quantity %s%s; known are %s", name, didYouMean(nearestKey(name, quantityNames())), strings.Join(quantityNames(), ", "))
+			h.fail("pattern", "unknown quantity %s%s; known are %s", name, tomlfile.DidYouMean(tomlfile.NearestKey(name, quantityNames())), strings.Join(quantityNames(), ", "))
 		}
 		if slices.Contains(f.gives[:i], name) {
 			h.fail("pattern", "two groups named %s", name)

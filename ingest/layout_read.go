@@ -6,6 +6,8 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+
+	"swaybook/ingest/tomlfile"
 )
 
 // The bounds of what a description may ask for.
@@ -252,7 +254,7 @@ func (l *Layout) fix(t *tomlTable, name string, column int) {
 	case float64:
 		text = strconv.FormatFloat(v, 'g', -1, 64)
 	default:
-		t.fail(name, "expected a text or a number, found %s", tomlKind(v))
+		t.fail(name, "expected a text or a number, found %s", tomlfile.Kind(v))
 		return
 	}
 	l.fixed[quantityKey{name, column}] = text

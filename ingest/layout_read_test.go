@@ -36,7 +36,7 @@ func TestLayoutMistakes(t *testing.T) {
 		{1, `name = "plain"`, `case.toml:1: name: "plain" is the name of another format`},
 		{1, `name = 7`, `case.toml:1: name: expected a text, found a number`},
 		{1, `name = "a`, `case.toml:1: basic strings cannot have new lines`},
-		{1, "name = \"short\"\nname = \"again\"", `case.toml:2: key name is already defined`},
+		{1, "name = \"short\"\nname = \"again\"", `case.toml:2: name is given twice, first in line 1`},
 		{1, "name = \"short\"\ncolour = 1", `case.toml:2: colour: unknown key; known are blocks, column, data, directions, fixed, header, name, numbers, recognise, title`},
 
 		{2, ``, `case.toml: recognise: missing: say by [[recognise]] what lines show that a file is of this layout`},

@@ -9,8 +9,7 @@ import (
 	"strconv"
 	"strings"
 
-	"github.com/pelletier/go-toml/v2"
-	"github.com/pelletier/go-toml/v2/unstable"
+	"swaybook/ingest/tomlfile"
 )
 
 // maxDescription is the largest description of a layout that is read, in bytes.
@@ -29,8 +28,8 @@ type tomlTable struct {
 
 // tomlDocument is what the tables of one document share.
 type tomlDocument struct {
-	lines map[string]int // of keys and tables by path
-	err   error          // the first mistake, a *ParseError without path
+	*tomlfile.Document
+	err error // the first mistake, a *ParseError without path
 	// lacking is the table in which that is a missing key, nil for another mistake.
 	lacking *tomlTable
 }
@@ -40,110 +39,11 @@ func parseTOML(data []byte) (*tomlTable, error) {
 	if len(data) > maxDescription {
 		return nil, refuse(0, "", "description of %d bytes is larger than the limit of %d", len(data), maxDescription)
 	}
-	data = bytes.TrimPrefix(data, []byte("\xef\xbb\xbf"))
-	values := map[string]any{}
-	if err := toml.Unmarshal(data, &values); err != nil {
-		line := 0
-		if de, ok := errors.AsType[*toml.DecodeError](err); ok {
-			line, _ = de.Position()
-		}
-		return nil, refuse(line, "", "%s", strings.TrimPrefix(err.Error(), "toml: "))
+	d, err := tomlfile.Parse(data)
+	if wrong, ok := errors.AsType[*tomlfile.Error](err); ok {
+		return nil, &ParseError{Line: wrong.Line, Err: wrong.Err}
 	}
-	d := &tomlDocument{lines: map[string]int{}}
-	(&lineWalk{lines: d.lines, data: data, line: 1}).document()
-	return &tomlTable{document: d, values: values, asked: map[string]bool{}}, nil
-}
-
-// lineWalk notes where each key and table of a document stands, which decoded
-// values do not tell.
-type lineWalk struct {
-	lines map[string]int
-	data  []byte
-	done  int // how far lines are counted
-	line  int // of the byte at done
-}
-
-func (w *lineWalk) document() {
-	parser := unstable.Parser{}
-	parser.Reset(w.data)
-	table, count := "", map[string]int{}
-	for parser.NextExpression() {
-		switch e := parser.Expression(); e.Kind {
-		case unstable.Table:
-			table = keyPath("", e.Key())
-			w.note(table, e)
-		case unstable.ArrayTable:
-			name := keyPath("", e.Key())
-			table = join(name, strconv.Itoa(count[name]))
-			w.note(table, e)
-			if count[name]++; count[name] == 1 {
-				w.lines[name] = w.line
-			}
-		case unstable.KeyValue:
-			w.pair(table, e)
-		}
-	}
-}
-
-// note keeps the line of a key or table under its path. Nodes come in the order
-// of the document.
-func (w *lineWalk) note(path string, e *unstable.Node) {
-	keys := e.Key()
-	keys.Next()
-	at := int(keys.Node().Raw.Offset)
-	w.line += bytes.Count(w.data[w.done:at], []byte("\n"))
-	w.done = at
-	w.lines[path] = w.line
-}
-
-// pair notes a key and the keys in its value.
-func (w *lineWalk) pair(table string, e *unstable.Node) {
-	path := keyPath(table, e.Key())
-	w.note(path, e)
-	w.value(path, e.Value())
-}
-
-// value notes the keys in inline tables and in lists of them.
-func (w *lineWalk) value(path string, v *unstable.Node) {
-	i := 0
-	for it := v.Children(); it.Next(); {
-		switch {
-		case v.Kind == unstable.InlineTable && it.Node().Kind == unstable.KeyValue:
-			w.pair(path, it.Node())
-		case v.Kind == unstable.Array && it.Node().Kind != unstable.Comment:
-			w.value(join(path, strconv.Itoa(i)), it.Node())
-			i++
-		}
-	}
-}
-
-func keyPath(table string, keys unstable.Iterator) string {
-	for keys.Next() {
-		table = join(table, string(keys.Node().Data))
-	}
-	return table
-}
-
-// join appends a part to a path.
-func join(path, part string) string {
-	if path == "" {
-		return part
-	}
-	return path + "." + part
-}
-
-// line returns the line of a key, or of the table it is missing from.
-func (d *tomlDocument) line(path string) int {
-	for {
-		if n, ok := d.lines[path]; ok {
-			return n
-		}
-		at := strings.LastIndexByte(path, '.')
-		if at < 0 {
-			return 0
-		}
-		path = path[:at]
-	}
+	return &tomlTable{document: &tomlDocument{Document: d}, values: d.Values, asked: map[string]bool{}}, nil
 }
 
 // fail keeps the first mistake, at a key of the table or, where key is "", at
@@ -153,7 +53,7 @@ func (t *tomlTable) fail(key, format string, args ...any) {
 	if d.err != nil {
 		return
 	}
-	d.err = refuse(d.line(join(t.path, key)), strings.TrimPrefix(t.name+"."+key, "."), format, args...)
+	d.err = refuse(d.Line(tomlfile.Join(t.path, key)), tomlfile.Join(t.name, key), format, args...)
 	if !t.has(key) {
 		d.lacking = t
 	}
@@ -181,7 +81,7 @@ func (t *tomlTable) text(key string) string {
 		}
 		t.fail(key, "is empty")
 	default:
-		t.fail(key, "expected a text, found %s", tomlKind(v))
+		t.fail(key, "expected a text, found %s", tomlfile.Kind(v))
 	}
 	return ""
 }
@@ -209,7 +109,7 @@ func (t *tomlTable) wholeValue(key string, v any, low, high int) int {
 	n, ok := v.(int64)
 	switch {
 	case !ok:
-		t.fail(key, "expected a whole number, found %s", tomlKind(v))
+		t.fail(key, "expected a whole number, found %s", tomlfile.Kind(v))
 	case n < int64(low) || n > int64(high):
 		t.fail(key, "%d is outside %d to %d", n, low, high)
 	default:
@@ -223,7 +123,7 @@ func (t *tomlTable) flag(key string) bool {
 	v := t.value(key)
 	b, ok := v.(bool)
 	if v != nil && !ok {
-		t.fail(key, "expected true or false, found %s", tomlKind(v))
+		t.fail(key, "expected true or false, found %s", tomlfile.Kind(v))
 	}
 	return b
 }
@@ -233,7 +133,7 @@ func (t *tomlTable) list(key string) []any {
 	v := t.value(key)
 	list, ok := v.([]any)
 	if v != nil && !ok {
-		t.fail(key, "expected a list in [ ], found %s", tomlKind(v))
+		t.fail(key, "expected a list in [ ], found %s", tomlfile.Kind(v))
 	}
 	return list
 }
@@ -243,12 +143,12 @@ func (t *tomlTable) table(key string) *tomlTable {
 	v := t.value(key)
 	values, ok := v.(map[string]any)
 	if v != nil && !ok {
-		t.fail(key, "expected a table, found %s", tomlKind(v))
+		t.fail(key, "expected a table, found %s", tomlfile.Kind(v))
 	}
 	if !ok {
 		return nil
 	}
-	return &tomlTable{t.document, join(t.path, key), strings.TrimPrefix(t.name+"."+key, "."), values, map[string]bool{}}
+	return &tomlTable{t.document, tomlfile.Join(t.path, key), tomlfile.Join(t.name, key), values, map[string]bool{}}
 }
 
 // tables returns the tables of the list at key.
@@ -257,10 +157,10 @@ func (t *tomlTable) tables(key string) []*tomlTable {
 	for i, v := range t.list(key) {
 		values, ok := v.(map[string]any)
 		if !ok {
-			t.fail(key, "expected tables, found %s", tomlKind(v))
+			t.fail(key, "expected tables, found %s", tomlfile.Kind(v))
 			return nil
 		}
-		out = append(out, &tomlTable{t.document, join(join(t.path, key), strconv.Itoa(i)), strings.TrimPrefix(t.name+"."+key, "."), values, map[string]bool{}})
+		out = append(out, &tomlTable{t.document, tomlfile.Join(tomlfile.Join(t.path, key), strconv.Itoa(i)), tomlfile.Join(t.name, key), values, map[string]bool{}})
 	}
 	return out
 }
@@ -297,31 +197,8 @@ func (t *tomlTable) done() {
 		if t.document.lacking == t {
 			t.document.err, t.document.lacking = nil, nil
 		}
-		t.fail(key, "unknown key%s; known are %s", didYouMean(nearestKey(key, known)), strings.Join(known, ", "))
+		t.fail(key, "unknown key%s; known are %s", tomlfile.DidYouMean(tomlfile.NearestKey(key, known)), strings.Join(known, ", "))
 	}
-}
-
-// nearestKey returns the known key that is two edits away at most, and no more than
-// half of the letters; "" for none.
-func nearestKey(key string, known []string) string {
-	return nearest(key, known, min(2, len(key)/2))
-}
-
-// tomlKind names the kind of a value for messages.
-func tomlKind(v any) string {
-	switch v := v.(type) {
-	case string:
-		return "the text " + found(v)
-	case int64, float64:
-		return "a number"
-	case bool:
-		return "true or false"
-	case []any:
-		return "a list"
-	case map[string]any:
-		return "a table"
-	}
-	return "a date or time"
 }
 
 // maxPattern is the longest regular expression that is read, in bytes.

@@ -1,7 +1,6 @@
 package design
 
 import (
-	"bytes"
 	"cmp"
 	"errors"
 	"fmt"
@@ -10,8 +9,7 @@ import (
 	"strconv"
 	"strings"
 
-	"github.com/pelletier/go-toml/v2"
-	"github.com/pelletier/go-toml/v2/unstable"
+	"swaybook/ingest/tomlfile"
 )
 
 // FileError is a mistake in a spectrum's file, or in the table that it names.
@@ -39,9 +37,9 @@ func (e *FileError) Unwrap() error { return e.Err }
 
 // document is what the tables of one file share.
 type document struct {
-	path  string
-	lines map[string]int // of keys and tables, by their dotted names
-	err   *FileError     // the first mistake
+	*tomlfile.Document
+	path string
+	err  *FileError // the first mistake
 }
 
 // keys is a table whose keys are asked for one by one. The first mistake stays
@@ -53,63 +51,11 @@ type keys struct {
 }
 
 func parseTOML(path string, text []byte) (*keys, error) {
-	text = bytes.TrimPrefix(text, []byte("\xef\xbb\xbf"))
-	values := map[string]any{}
-	if err := toml.Unmarshal(text, &values); err != nil {
-		line := 0
-		if at, ok := errors.AsType[*toml.DecodeError](err); ok {
-			line, _ = at.Position()
-		}
-		return nil, &FileError{Path: path, Line: line, Err: errors.New(strings.TrimPrefix(err.Error(), "toml: "))}
+	d, err := tomlfile.Parse(text)
+	if wrong, ok := errors.AsType[*tomlfile.Error](err); ok {
+		return nil, &FileError{Path: path, Line: wrong.Line, Err: wrong.Err}
 	}
-	d := &document{path: path, lines: map[string]int{}}
-	d.noteLines(text)
-	return &keys{d, "", values}, nil
-}
-
-// noteLines notes where keys and tables stand, which decoded values do not tell.
-func (d *document) noteLines(text []byte) {
-	parser := unstable.Parser{}
-	parser.Reset(text)
-	table := ""
-	for parser.NextExpression() {
-		switch e := parser.Expression(); e.Kind {
-		case unstable.Table, unstable.ArrayTable:
-			table = d.noteLine("", e, text)
-		case unstable.KeyValue:
-			name := d.noteLine(table, e, text)
-			if e.Value().Kind != unstable.InlineTable {
-				continue
-			}
-			for in := e.Value().Children(); in.Next(); {
-				if in.Node().Kind == unstable.KeyValue {
-					d.noteLine(name, in.Node(), text)
-				}
-			}
-		}
-	}
-}
-
-// noteLine notes the line of a key in a table and returns its dotted name.
-func (d *document) noteLine(table string, e *unstable.Node, text []byte) string {
-	name, line := table, 0
-	for part := e.Key(); part.Next(); {
-		if line == 0 {
-			line = 1 + bytes.Count(text[:part.Node().Raw.Offset], []byte("\n"))
-		}
-		name = dotted(name, string(part.Node().Data))
-		if _, known := d.lines[name]; !known {
-			d.lines[name] = line
-		}
-	}
-	return name
-}
-
-func dotted(table, key string) string {
-	if table == "" || key == "" {
-		return table + key
-	}
-	return table + "." + key
+	return &keys{&document{Document: d, path: path}, "", d.Values}, nil
 }
 
 // fail keeps the first mistake, of a key, or of the table itself where key is
@@ -120,11 +66,8 @@ func (k *keys) failWith(key string, err error) {
 	if k.document.err != nil {
 		return
 	}
-	line, ok := k.document.lines[dotted(k.name, key)]
-	if !ok {
-		line = k.document.lines[k.name]
-	}
-	k.document.err = &FileError{k.document.path, line, dotted(k.name, key), err}
+	name := tomlfile.Join(k.name, key)
+	k.document.err = &FileError{k.document.path, k.document.Line(name), name, err}
 }
 
 // has reports whether the table has the key.
@@ -135,7 +78,7 @@ func (k *keys) has(key string) bool {
 
 // only refuses all other keys, the first in the file.
 func (k *keys) only(known ...string) {
-	line := func(key string) int { return k.document.lines[dotted(k.name, key)] }
+	line := func(key string) int { return k.document.Line(tomlfile.Join(k.name, key)) }
 	inOrder := slices.SortedFunc(maps.Keys(k.values), func(a, b string) int {
 		return cmp.Or(line(a)-line(b), strings.Compare(a, b))
 	})
@@ -257,7 +200,7 @@ func (k *keys) table(key string) *keys {
 	if !ok {
 		k.fail(key, "want a table such as { s = 1.15, tb_s = 0.2, tc_s = 0.6, td_s = 2 }, found %s", found(k.values[key]))
 	}
-	return &keys{k.document, dotted(k.name, key), values}
+	return &keys{k.document, tomlfile.Join(k.name, key), values}
 }
 
 // found names a value for messages.
