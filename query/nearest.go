@@ -69,20 +69,10 @@ const leastDistanceKM = 1
 // Source: D. Shepard, "A two-dimensional interpolation function for irregularly-spaced
 // data", Proc. 23rd ACM National Conference, 1968, 517–524, with the power 2.
 func (q NearestQuestion) Ask(ctx context.Context, store *db.Store) (*NearestAnswer, error) {
-	base, err := q.PortfolioQuestion.withDefaults()
-	switch {
-	case err != nil:
+	q, err := q.withDefaults()
+	if err != nil {
 		return nil, err
-	case q.Scope.Event == "":
-		return nil, usage("nearest", "the nearest stations are of one event: give --event latest, or its code")
-	case q.Stations < 1:
-		return nil, usage("nearest", "%d stations are none", q.Stations)
-	case base.Extras.isAny():
-		return nil, usage("show", "an estimate from the nearest stations has no further figures, and no design spectrum")
-	case base.Component == ComponentEach:
-		return nil, usage("component", "each is two motions a station; ask for one")
 	}
-	q.PortfolioQuestion = base
 	answer := &NearestAnswer{Ordinates: q.Ordinates}
 	if err := view(ctx, store, func(snapshot *db.Snapshot) error { return q.answer(ctx, snapshot, answer) }); err != nil {
 		return nil, err
@@ -90,11 +80,30 @@ func (q NearestQuestion) Ask(ctx context.Context, store *db.Store) (*NearestAnsw
 	return answer, nil
 }
 
-func (q *NearestQuestion) answer(ctx context.Context, snapshot *db.Snapshot, answer *NearestAnswer) error {
-	placed := slices.DeleteFunc(slices.Clone(q.Structures), func(s PortfolioStructure) bool { return s.LatitudeDeg == nil })
-	if len(placed) == 0 {
-		return usage("structures", "none has a latitude and a longitude")
+func (q NearestQuestion) withDefaults() (NearestQuestion, error) {
+	base, err := q.PortfolioQuestion.withDefaults()
+	switch {
+	case err != nil:
+		return q, err
+	case q.Scope.Event == "":
+		return q, usage("nearest", "the nearest stations are of one event: give --event latest, or its code")
+	case q.Stations < 1:
+		return q, usage("nearest", "%d stations are none", q.Stations)
+	case base.Extras.isAny():
+		return q, usage("show", "an estimate from the nearest stations has no further figures, and no design spectrum")
+	case base.Component == ComponentEach:
+		return q, usage("component", "each is two motions a station; ask for one")
+	case !slices.ContainsFunc(q.Structures, PortfolioStructure.hasPlace):
+		return q, usage("structures", "none has a latitude and a longitude")
 	}
+	q.PortfolioQuestion = base
+	return q, nil
+}
+
+func (s PortfolioStructure) hasPlace() bool { return s.LatitudeDeg != nil }
+
+func (q *NearestQuestion) answer(ctx context.Context, snapshot *db.Snapshot, answer *NearestAnswer) error {
+	placed := slices.DeleteFunc(slices.Clone(q.Structures), func(s PortfolioStructure) bool { return !s.hasPlace() })
 	without := len(q.Structures) - len(placed)
 	q.Structures = placed
 	w, err := q.begin(ctx, snapshot, db.DetailRecord)

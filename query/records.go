@@ -98,13 +98,13 @@ type RecordsAnswer struct {
 // selected the error is an EmptyError, and the answer an empty list that can be
 // written all the same.
 func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnswer, error) {
-	selection, err := q.ofEverything().withDefaults(ComponentRecorded, SitingAll, storedComponents)
+	q, err := q.withDefaults()
 	if err != nil {
 		return nil, err
 	}
 	answer := &RecordsAnswer{}
 	err = view(ctx, store, func(snapshot *db.Snapshot) error {
-		picked, err := pick(ctx, snapshot, selection, db.AllDetails)
+		picked, err := pick(ctx, snapshot, q.Selection, db.AllDetails)
 		if picked == nil {
 			return err
 		}
@@ -115,6 +115,12 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 		return err
 	})
 	return answer, err
+}
+
+func (q RecordsQuestion) withDefaults() (RecordsQuestion, error) {
+	var err error
+	q.Selection, err = q.ofEverything().withDefaults(ComponentRecorded, SitingAll, storedComponents)
+	return q, err
 }
 
 func rowOf(m *motion) RecordRow {
