@@ -88,30 +88,33 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 			return o, fmt.Errorf("find records: %w", err) // before a store is made
 		}
 	}
-	if o.pipeline.Hints, err = ingestHints(c); err != nil {
-		return o, err
-	}
-	if o.pipeline.Hints.Metadata, err = ingest.ReadMetadata(c.Context, c.StringSlice("metadata")); err != nil {
-		return o, err
-	}
-	if o.pipeline.Hints.Layouts, err = readLayouts(c.StringSlice("layout")); err != nil {
-		return o, err
-	}
+	return o, o.describe(c)
+}
+
+// describe reads what the flags say of files and spectra, and the files that they name,
+// before anything is stored. The error has every mistake.
+func (o *ingestOptions) describe(c *cli.Context) error {
+	p, wrong := &o.pipeline, make([]error, 6)
+	p.Hints, wrong[0] = ingestHints(c)
+	p.Hints.Metadata, wrong[1] = ingest.ReadMetadata(c.Context, c.StringSlice("metadata"))
+	p.Hints.Layouts, wrong[2] = readLayouts(c.StringSlice("layout"))
 	for _, name := range c.StringSlice("layout") {
-		o.pipeline.Own[name] = "a layout itself"
+		p.Own[name] = "a layout itself"
 	}
-	if o.pipeline.Grid, err = ingestGrid(c); err != nil {
-		return o, err
+	p.Grid, wrong[3] = ingestGrid(c)
+	wrong[4] = o.readRecipe(c.String("recipe"))
+	wrong[5] = o.readCatalogue(c.String("catalogue"))
+	return errors.Join(wrong[0], ofFlag("metadata", wrong[1]), ofFlag("layout", wrong[2]), wrong[3],
+		ofFlag("recipe", wrong[4]), ofFlag("catalogue", wrong[5]))
+}
+
+func (o *ingestOptions) readRecipe(name string) error {
+	if name == "" {
+		return nil
 	}
-	if name := c.String("recipe"); name != "" {
-		recipe, err := readRecipe(name)
-		if err != nil {
-			return o, err
-		}
-		o.pipeline.Recipe = &recipe
-		o.pipeline.Own[name] = "a recipe itself"
-	}
-	return o, o.readCatalogue(c.String("catalogue"))
+	recipe, err := readRecipe(name)
+	o.pipeline.Recipe, o.pipeline.Own[name] = &recipe, "a recipe itself"
+	return err
 }
 
 func pipelineOptions(store string, m *monitor) pipeline.Options {
@@ -128,31 +131,30 @@ func ingestHints(c *cli.Context) (ingest.Hints, error) {
 	}
 	// Counts are a unit for miniSEED, whose metadata give the scale; readers of other
 	// formats refuse them where a file states no unit.
+	var wrong []error
 	if h.Unit != "" && !ingest.IsCounts(h.Unit) {
 		if _, err := ingest.ParseUnit(h.Unit); err != nil {
-			return h, usagef("--unit: %w", err)
+			wrong = append(wrong, ofFlag("unit", usagef("--unit: %w", err)))
 		}
 	}
 	if c.IsSet("dt") && !(h.StepS > 0) {
-		return h, usagef("--dt %g: want a positive time step in s", h.StepS)
+		wrong = append(wrong, ofFlag("dt", usagef("--dt %g: want a positive time step in s", h.StepS)))
 	}
-	return h, nil
+	return h, errors.Join(wrong...)
 }
 
 func ingestGrid(c *cli.Context) (g db.Grid, err error) {
 	if c.IsSet("periods") {
-		if g.PeriodsS, err = periodList(c.String("periods")); err != nil {
-			return g, err
-		}
+		err = parseInto(&g.PeriodsS, c, "periods", periodList)
 	}
 	if c.IsSet("dampings") {
-		g.Dampings, err = dampingList(c.String("dampings"))
+		err = errors.Join(err, parseInto(&g.Dampings, c, "dampings", dampingList))
 	}
 	return g, err
 }
 
-// readCatalogue loads the catalogue before anything is stored, so that a
-// mistake in it leaves no half-described records behind.
+// readCatalogue loads the catalogue; a mistake in it leaves no half-described records
+// behind.
 func (o *ingestOptions) readCatalogue(name string) error {
 	if name == "" {
 		return nil

@@ -77,13 +77,17 @@ func exitCode(err error, stderr io.Writer) int {
 	if stopped {
 		return exitInterrupted
 	}
-	if _, ok := errors.AsType[*usageError](err); ok {
-		return exitUsage
-	}
-	if _, ok := errors.AsType[*query.UsageError](err); ok {
+	if isUsage(err) {
 		return exitUsage
 	}
 	return exitFailed
+}
+
+// isUsage reports whether an error is a mistake of the user's.
+func isUsage(err error) bool {
+	_, inCommand := errors.AsType[*usageError](err)
+	_, inQuestion := errors.AsType[*query.UsageError](err)
+	return inCommand || inQuestion
 }
 
 func newApp(stdout, stderr io.Writer) *cli.App {

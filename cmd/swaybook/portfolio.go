@@ -47,7 +47,7 @@ func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
 		return o, err
 	}
 	if o.nearest = c.Int("nearest"); c.IsSet("nearest") && o.nearest < 1 {
-		return o, usagef("--nearest %d: want at least 1", o.nearest)
+		return o, ofFlag("nearest", usagef("--nearest %d: want at least 1", o.nearest))
 	}
 	q := &o.question
 	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
@@ -63,12 +63,13 @@ func newPortfolioOptions(c *cli.Context) (o portfolioOptions, err error) {
 
 // exclude refuses flags.
 func exclude(c *cli.Context, flags []string, why string) error {
+	var wrong []error
 	for _, flag := range flags {
 		if c.IsSet(flag) {
-			return usagef(why, flag)
+			wrong = append(wrong, ofFlag(flag, usagef(why, flag)))
 		}
 	}
-	return nil
+	return errors.Join(wrong...)
 }
 
 func runPortfolio(ctx context.Context, store *db.Store, o portfolioOptions, w, stderr io.Writer) error {
@@ -83,5 +84,16 @@ func (o *portfolioOptions) ask(ctx context.Context, store *db.Store) (statistics
 	if o.nearest == 0 {
 		return o.question.Ask(ctx, store)
 	}
-	return query.NearestQuestion{PortfolioQuestion: o.question, Stations: o.nearest}.Ask(ctx, store)
+	return o.nearestQuestion().Ask(ctx, store)
+}
+
+func (o *portfolioOptions) validate() error {
+	if o.nearest == 0 {
+		return o.question.Validate()
+	}
+	return o.nearestQuestion().Validate()
+}
+
+func (o *portfolioOptions) nearestQuestion() query.NearestQuestion {
+	return query.NearestQuestion{PortfolioQuestion: o.question, Stations: o.nearest}
 }

@@ -63,29 +63,20 @@ func formatFlag(choices string) cli.Flag {
 // newSelection reads the selection flags.
 func newSelection(c *cli.Context, component func(string) (query.Component, error), siting func(string) (query.Siting, error)) (s query.Selection, err error) {
 	s.Where, s.Scope.Event = c.String("where"), c.String("event")
+	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
+	s.IgnoreUsableBand = c.Bool("ignore-usable-band")
 	err = errors.Join(
 		parseInto(&s.Scope.Near, c, "near", query.ParseNear),
 		parseInto(&s.Scope.Since, c, "since", query.ParseSince),
-		parseInto(&s.Scope.Until, c, "until", query.ParseUntil))
-	if err != nil {
-		return s, err
-	}
-	if s.Component, err = component(c.String("component")); err != nil {
-		return s, err
-	}
-	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
-	s.IgnoreUsableBand = c.Bool("ignore-usable-band")
+		parseInto(&s.Scope.Until, c, "until", query.ParseUntil),
+		parseInto(&s.Component, c, "component", component),
+		parseInto(&s.Siting, c, "siting", siting))
 	if c.IsSet("balance") {
-		if s.Balance, err = query.ParseBalance(c.String("balance")); err != nil {
-			return s, err
-		}
+		err = errors.Join(err, parseInto(&s.Balance, c, "balance", query.ParseBalance))
 	}
 	if c.IsSet("screen") {
-		if s.Screen, err = query.ParseScreen(c.String("screen")); err != nil {
-			return s, err
-		}
+		err = errors.Join(err, parseInto(&s.Screen, c, "screen", query.ParseScreen))
 	}
-	s.Siting, err = siting(c.String("siting"))
 	return s, err
 }
 
@@ -141,7 +132,7 @@ func newExtras(e *query.Extras, c *cli.Context) error {
 		parseInto(&e.Level, c, "confidence", query.ParseLevel),
 		parseInto(&e.Design, c, "design", query.ReadDesign))
 	if c.IsSet("confidence") && !e.Intervals && e.Bootstrap.Resamples == 0 {
-		return usagef("--confidence goes with --show intervals or bootstrap")
+		err = errors.Join(err, ofFlag("confidence", usagef("--confidence goes with --show intervals or bootstrap")))
 	}
 	return err
 }
@@ -149,14 +140,11 @@ func newExtras(e *query.Extras, c *cli.Context) error {
 // setBootstrap reads the flags of a bootstrap that is asked for.
 func setBootstrap(b *query.Bootstrap, c *cli.Context) error {
 	if b.Resamples == 0 {
-		if c.IsSet("resamples") || c.IsSet("seed") {
-			return usagef("--resamples and --seed go with --show bootstrap")
-		}
-		return nil
+		return exclude(c, []string{"resamples", "seed"}, "--%s goes with --show bootstrap")
 	}
 	*b = query.Bootstrap{Resamples: c.Int("resamples"), Seed: c.Uint64("seed")}
 	if b.Resamples == 0 {
-		return usagef("--resamples 0: --show bootstrap needs some")
+		return ofFlag("resamples", usagef("--resamples 0: --show bootstrap needs some"))
 	}
 	return nil
 }
@@ -164,7 +152,7 @@ func setBootstrap(b *query.Bootstrap, c *cli.Context) error {
 // parseInto reads a flag's text into dst.
 func parseInto[T any](dst *T, c *cli.Context, flag string, parse func(string) (T, error)) (err error) {
 	*dst, err = parse(c.String(flag))
-	return err
+	return ofFlag(flag, err)
 }
 
 // statistics is an answer that can be written in units.
@@ -213,11 +201,6 @@ func queryDemandCommand() *cli.Command {
 			if c.IsSet("structures") {
 				return queryPortfolio(c)
 			}
-			for _, flag := range []string{"ordinates", "nearest"} {
-				if c.IsSet(flag) {
-					return usagef("--%s goes with --structures", flag)
-				}
-			}
 			o, err := newDemandOptions(c)
 			if err != nil {
 				return err
@@ -237,15 +220,14 @@ type demandOptions struct {
 
 func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
 	q := &o.question
-	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
-	if err != nil {
-		return o, err
-	}
+	var errSelection error
+	q.Selection, errSelection = newSelection(c, query.ParseComponent, query.ParseSiting)
 	q.Structure, err = query.ParseStructure(query.StructureText{
 		Period: c.String("period"), Stiffness: c.String("stiffness"), Mass: c.String("mass"), Weight: c.String("weight"),
 		Damping: c.String("damping"), Height: c.String("height"),
 	})
-	return o, errors.Join(err, noArguments(c),
+	return o, errors.Join(errSelection, err, noArguments(c),
+		exclude(c, []string{"ordinates", "nearest"}, "--%s goes with --structures"),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
 		parseInto(&q.By, c, "by", query.ParseGrouping),
 		newExtras(&q.Extras, c),
@@ -298,9 +280,9 @@ func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
 		case !c.Bool(flag):
 			continue
 		case slices.ContainsFunc(selectionFlags("", ""), func(f cli.Flag) bool { return c.IsSet(f.Names()[0]) }):
-			return o, usagef("--%s lists no components, and nothing that has attributes to select by", flag)
+			return o, ofFlag(flag, usagef("--%s lists no components, and nothing that has attributes to select by", flag))
 		case o.list != nil:
-			return o, usagef("--rejected and --conflicts are two lists: ask for one")
+			return o, ofFlag(flag, usagef("--rejected and --conflicts are two lists: ask for one"))
 		}
 		o.list = otherLists[flag]
 	}
