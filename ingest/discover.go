@@ -180,3 +180,19 @@ func readLimited(file string, limit int64) ([]byte, fs.FileInfo, error) {
 	}
 	return data[:n], info, nil
 }
+
+// IsArchive reports whether a file is an archive, by its content. What cannot be read is
+// none.
+func IsArchive(file string) bool {
+	f, err := os.Open(file)
+	if err != nil {
+		return false
+	}
+	defer f.Close()
+	head := make([]byte, archive.HeadSize)
+	n, err := io.ReadFull(f, head)
+	if err != nil && err != io.EOF && err != io.ErrUnexpectedEOF {
+		return false
+	}
+	return archive.Is(head[:n])
+}

@@ -14,7 +14,7 @@ import (
 // layers says what a package may import of ours, and why. A package that is
 // not listed may import nothing of ours; tests are free.
 var layers = map[string][]string{
-	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "db", "query"},                                                                                                        // wiring, no arithmetic and no SQL
+	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "db", "query"},                                                                                      // wiring, no arithmetic and no SQL
 	"ingest":             {"ingest/miniseed", "ingest/fdsnxml", "ingest/archive", "ingest/tomlfile"},                                                                                                          // what one reader needs
 	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition", "pipeline/signal", "pipeline/intensity", "pipeline/quality"}, // the way in
 	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                                                                             // invents files, knows nothing of readers

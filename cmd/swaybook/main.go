@@ -106,6 +106,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			ingestCommand(),
 			queryCommand(),
 			exportCommand(),
+			reprocessCommand(),
 			formatsCommand(),
 			recipesCommand(),
 			demoCommand(),

@@ -40,6 +40,15 @@ func recipesCommand() *cli.Command {
 	}
 }
 
+// builtInRecipes are the names of the recipes that no file holds.
+func builtInRecipes() []string {
+	var names []string
+	for _, r := range condition.BuiltIn() {
+		names = append(names, r.Name)
+	}
+	return names
+}
+
 // readRecipe returns a built-in recipe by name, or that of a file.
 func readRecipe(name string) (condition.Recipe, error) {
 	for _, r := range condition.BuiltIn() {

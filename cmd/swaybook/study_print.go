@@ -1,0 +1,257 @@
+package main
+
+import (
+	"encoding/json"
+	"fmt"
+	"io"
+	"strconv"
+	"strings"
+	"text/tabwriter"
+
+	"swaybook/pipeline/study"
+)
+
+// planReport is what reprocess --check prints, as text and as JSON. Paths are absolute.
+type planReport struct {
+	Name  string `json:"name"`
+	Study string `json:"study"`
+	Store struct {
+		Path  string `json:"path"`
+		IsNew bool   `json:"is_new"`
+	} `json:"store"`
+	Sources []sourceReport `json:"sources"`
+	Include []string       `json:"include"`
+	Exclude []string       `json:"exclude"`
+	// Ingest has the other keys of the way in, as they are given.
+	Ingest []settingReport `json:"ingest"`
+	Recipe struct {
+		Name string `json:"name"`
+		Hash string `json:"hash"`
+	} `json:"recipe"`
+	// Grid has empty lists for what the store has, or the default.
+	Grid struct {
+		PeriodsS []float64 `json:"periods_s"`
+		Dampings []float64 `json:"dampings"`
+	} `json:"grid"`
+	MaxDrift   *float64          `json:"max_drift"`
+	Keep       *int              `json:"keep"`
+	State      *string           `json:"state"`
+	Metrics    *string           `json:"metrics"`
+	Selections []selectionReport `json:"selections"`
+	Products   []productReport   `json:"products"`
+}
+
+type sourceReport struct {
+	Path       string   `json:"path"`
+	Kind       string   `json:"kind"`
+	Files      int      `json:"files"`
+	LeftOut    int      `json:"left_out"`
+	Unreadable []string `json:"unreadable"`
+}
+
+type settingReport struct {
+	Key   string `json:"key"`
+	Value string `json:"value"`
+}
+
+type selectionReport struct {
+	Name     string          `json:"name"`
+	Settings []settingReport `json:"settings"`
+}
+
+type productReport struct {
+	Name      string          `json:"name"`
+	Kind      study.Kind      `json:"kind"`
+	Selection *string         `json:"selection"`
+	Settings  []settingReport `json:"settings"`
+	Files     []fileReport    `json:"files"`
+}
+
+type fileReport struct {
+	Path   string       `json:"path"`
+	Format study.Format `json:"format"`
+}
+
+func (p *studyPlan) report() planReport {
+	s := p.study
+	r := planReport{
+		Name: s.Name.Value, Study: s.Path(), Sources: []sourceReport{}, Include: patternTexts(s.Include), Exclude: patternTexts(s.Exclude),
+		Ingest: settingReports(s.Ingest), MaxDrift: s.MaxDrift, State: given(s.State), Metrics: given(s.Metrics),
+		Selections: []selectionReport{}, Products: []productReport{},
+	}
+	r.Store.Path, r.Store.IsNew = s.Store.Value, p.isNew
+	r.Recipe.Name, r.Recipe.Hash = p.ingest.pipeline.Recipe.Name, p.ingest.pipeline.Recipe.Hash()
+	grid := p.ingest.pipeline.Grid
+	r.Grid.PeriodsS, r.Grid.Dampings = append([]float64{}, grid.PeriodsS...), append([]float64{}, grid.Dampings...)
+	if s.Keep > 0 {
+		r.Keep = &s.Keep
+	}
+	for _, source := range p.sources {
+		one := sourceReport{source.path, source.kind, source.files, source.leftOut, []string{}}
+		for _, err := range source.unreadable {
+			one.Unreadable = append(one.Unreadable, err.Error())
+		}
+		r.Sources = append(r.Sources, one)
+	}
+	for _, chosen := range s.Selections {
+		r.Selections = append(r.Selections, selectionReport{chosen.Name, settingReports(chosen.Settings)})
+	}
+	for _, described := range s.Products {
+		one := productReport{Name: described.Name, Kind: described.Kind, Settings: settingReports(described.Settings), Files: []fileReport{}}
+		if described.Selection != "" {
+			one.Selection = &described.Selection
+		}
+		for _, f := range described.Files {
+			one.Files = append(one.Files, fileReport{f.Value, f.Format})
+		}
+		r.Products = append(r.Products, one)
+	}
+	return r
+}
+
+func given(t study.Text) *string {
+	if t.Value == "" {
+		return nil
+	}
+	return &t.Value
+}
+
+func patternTexts(patterns []study.Pattern) []string {
+	out := make([]string, len(patterns))
+	for i, p := range patterns {
+		out[i] = p.Value
+	}
+	return out
+}
+
+func settingReports(settings []study.Setting) []settingReport {
+	out := make([]settingReport, len(settings))
+	for i, s := range settings {
+		out[i] = settingReport{s.Key, s.Value}
+	}
+	return out
+}
+
+// print writes the plan. Paths for people are relative to the study's folder.
+func (p *studyPlan) print(w io.Writer, asJSON bool) error {
+	r := p.report()
+	if asJSON {
+		e := json.NewEncoder(w)
+		e.SetIndent("", "  ")
+		e.SetEscapeHTML(false) // of comparisons
+		return e.Encode(r)
+	}
+	table := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
+	out := &printer{w: table}
+	out.printf("%s\nnothing was done: this is the plan of %s\n\n", r.Name, p.study.File)
+	p.printWayIn(out, &r)
+	out.printf("\nproduct\tselection\tsettings\tfiles\n")
+	for i, one := range p.study.Products {
+		out.printf("%s\t%s\t%s\t%s\n", one.Path(), orDash(one.Selection), orDash(p.words(one.Settings)), orDash(p.files(r.Products[i].Files)))
+	}
+	if out.err != nil {
+		return out.err
+	}
+	return table.Flush()
+}
+
+// printWayIn writes what fills the store.
+func (p *studyPlan) printWayIn(out *printer, r *planReport) {
+	short := p.study.Short
+	state := "is there"
+	if r.Store.IsNew {
+		state = "new"
+	}
+	out.printf("store\t%s, %s\n", short(r.Store.Path), state)
+	for i, s := range r.Sources {
+		out.printf("%s\t%s, %s\n", titleOnce(i, "sources"), short(s.Path), sourceWords(s))
+	}
+	if len(r.Include)+len(r.Exclude) > 0 {
+		out.printf("patterns\tinclude %s; exclude %s\n", orDash(strings.Join(r.Include, " ")), orDash(strings.Join(r.Exclude, " ")))
+	}
+	for _, s := range p.study.Ingest {
+		if s.Key != "recipe" && s.Key != "periods" && s.Key != "dampings" {
+			out.printf("%s\t%s\n", s.Key, short(s.Value))
+		}
+	}
+	out.printf("recipe\t%s  %.12s\n", r.Recipe.Name, r.Recipe.Hash)
+	out.printf("periods\t%s\n", gridWords(r.Grid.PeriodsS, " s", r.Store.IsNew))
+	out.printf("dampings\t%s\n", gridWords(r.Grid.Dampings, "", r.Store.IsNew))
+	drift, keep := "published whatever changed", "all editions"
+	if r.MaxDrift != nil {
+		drift = fmt.Sprintf("held back beyond %s %%", strconv.FormatFloat(100**r.MaxDrift, 'g', 6, 64))
+	}
+	if r.Keep != nil {
+		keep = fmt.Sprintf("editions: %d", *r.Keep)
+	}
+	out.printf("drift\t%s\nkept\t%s\n", drift, keep)
+	for _, one := range []struct {
+		title string
+		path  *string
+	}{{"state", r.State}, {"metrics", r.Metrics}} {
+		if one.path != nil {
+			out.printf("%s\t%s\n", one.title, short(*one.path))
+		}
+	}
+}
+
+func titleOnce(i int, title string) string {
+	if i > 0 {
+		return ""
+	}
+	return title
+}
+
+func sourceWords(s sourceReport) string {
+	text := fmt.Sprintf("%s: files %d", s.Kind, s.Files)
+	if s.LeftOut > 0 {
+		text += fmt.Sprintf(", left out %d", s.LeftOut)
+	}
+	if n := len(s.Unreadable); n > 0 {
+		text += fmt.Sprintf(", not readable %d, first %s", n, s.Unreadable[0])
+	}
+	return text
+}
+
+// gridWords says in short what a list of the grid has.
+func gridWords(list []float64, unit string, isNew bool) string {
+	const few = 8
+	switch n := len(list); {
+	case n == 0 && isNew:
+		return "the default"
+	case n == 0:
+		return "the store's"
+	case n > few:
+		return fmt.Sprintf("%d, from %g to %g%s", n, list[0], list[n-1], unit)
+	default:
+		return strings.Trim(fmt.Sprint(list), "[]") + unit
+	}
+}
+
+// words writes settings as flags.
+func (p *studyPlan) words(settings []study.Setting) string {
+	var words []string
+	for _, s := range settings {
+		word := s.Key
+		if s.Value != "true" {
+			word += "=" + quoted(p.study.Short(s.Value))
+		}
+		words = append(words, word)
+	}
+	return strings.Join(words, " ")
+}
+
+func (p *studyPlan) files(files []fileReport) string {
+	var names []string
+	for _, f := range files {
+		names = append(names, p.study.Short(f.Path))
+	}
+	return strings.Join(names, ", ")
+}
+
+func orDash(text string) string {
+	if text == "" {
+		return "-"
+	}
+	return text
+}

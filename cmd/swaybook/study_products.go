@@ -1,0 +1,134 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"io"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+	"swaybook/pipeline/study"
+	"swaybook/query"
+)
+
+// product is a question of a study, ready to be asked.
+type product struct {
+	name      string
+	kind      study.Kind
+	selection string // "" where it names none
+	settings  []study.Setting
+	ask       asker
+	files     []outputFile // none of a product that is only watched
+}
+
+// outputFile is where an answer is written.
+type outputFile struct {
+	path   string
+	format query.Format
+}
+
+// fileFormats are the formats by the extensions of files.
+var fileFormats = map[study.Format]query.Format{
+	study.CSV: query.FormatCSV, study.JSON: query.FormatJSON, study.TXT: query.FormatTable,
+}
+
+// asker asks a question of a store.
+type asker func(context.Context, *db.Store) (answer, error)
+
+// answer can be written in any format. Remarks belong to it and go to people where the
+// format has no room for them.
+type answer interface {
+	Write(io.Writer, query.Format) error
+	Remarks() string
+}
+
+// inUnits is an answer of statistics in the units that were asked for.
+type inUnits struct {
+	statistics
+	units query.Units
+}
+
+func (a inUnits) Write(w io.Writer, f query.Format) error { return a.statistics.Write(w, f, a.units) }
+
+// list is an answer of records.
+type list struct {
+	writer
+	remarks string
+}
+
+func (l list) Remarks() string { return l.remarks }
+
+// newQuestion reads the flags of a command into its question, by kind.
+var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
+	study.Spectrum: newSpectrumAsker,
+	study.Demand:   newDemandAsker,
+	study.Records:  newRecordsAsker,
+}
+
+func newSpectrumAsker(c *cli.Context) (asker, error) {
+	o, err := newSpectrumOptions(c)
+	ask := func(ctx context.Context, store *db.Store) (answer, error) {
+		a, err := o.question.Ask(ctx, store)
+		if err != nil {
+			return nil, err
+		}
+		return inUnits{a, o.units}, nil
+	}
+	return ask, validated(err, o.question.Validate, o.question.Selection)
+}
+
+func newDemandAsker(c *cli.Context) (asker, error) {
+	if c.IsSet("structures") {
+		return newPortfolioAsker(c)
+	}
+	o, err := newDemandOptions(c)
+	ask := func(ctx context.Context, store *db.Store) (answer, error) {
+		a, err := o.question.Ask(ctx, store)
+		if err != nil {
+			return nil, err
+		}
+		return inUnits{a, o.units}, nil
+	}
+	return ask, validated(err, o.question.Validate, o.question.Selection)
+}
+
+func newPortfolioAsker(c *cli.Context) (asker, error) {
+	o, err := newPortfolioOptions(c)
+	ask := func(ctx context.Context, store *db.Store) (answer, error) {
+		a, err := o.ask(ctx, store)
+		if err != nil {
+			return nil, err
+		}
+		return inUnits{a, o.units}, nil
+	}
+	return ask, validated(err, o.validate, o.question.Selection)
+}
+
+func newRecordsAsker(c *cli.Context) (asker, error) {
+	o, err := newRecordsOptions(c)
+	ask := func(ctx context.Context, store *db.Store) (answer, error) {
+		if o.list != nil {
+			a, err := o.list(ctx, store)
+			return list{a, ""}, err
+		}
+		a, err := o.question.Ask(ctx, store)
+		if empty, ok := errors.AsType[*query.EmptyError](err); ok { // a list may be empty
+			return list{a, empty.Error() + "\n"}, nil
+		}
+		if err != nil {
+			return nil, err
+		}
+		return list{a, a.Selection.Remarks()}, nil
+	}
+	return ask, validated(err, o.question.Validate, o.question.Selection)
+}
+
+// validated checks a question whose flags were read. Of one that could not be read whole
+// the expression can be checked all the same.
+func validated(err error, validate func() error, s query.Selection) error {
+	if err != nil {
+		return errors.Join(err, s.Validate())
+	}
+	return validate()
+}
