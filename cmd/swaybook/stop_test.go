@@ -20,17 +20,14 @@ import (
 	"swaybook/pipeline/demo"
 )
 
-// A process that is stopped in the middle of an ingest, politely or not, leaves
-// whole batches; the next run finishes, and nobody can tell the difference.
-func TestAStoppedIngestIsFinishedByTheNext(t *testing.T) {
+// slowIngest writes an archive of some hundred files and returns the command that reads it
+// into a store, slowly enough to be stopped on the way; args follow its own.
+func slowIngest(t *testing.T) func(store string, args ...string) *exec.Cmd {
+	t.Helper()
 	if testing.Short() {
 		t.Skip("writes and reads an archive of some hundred files")
 	}
-	if runtime.GOOS == "windows" {
-		t.Skip("no signals to send on this system")
-	}
-	dir := t.TempDir()
-	files := filepath.Join(dir, "files")
+	files := filepath.Join(t.TempDir(), "files")
 	if _, err := demo.Write(files, demo.Options{Events: 8, Stations: 20, Seed: 2}); err != nil {
 		t.Fatal(err)
 	}
@@ -39,27 +36,72 @@ func TestAStoppedIngestIsFinishedByTheNext(t *testing.T) {
 	for i := range 60 {
 		periods += fmt.Sprintf(",0.%d", 200+i)
 	}
-	ingest := func(store string) *exec.Cmd {
-		return exec.Command("swaybook", "--quiet", "--store", store, "ingest", files, "--periods", periods, "--workers", "1")
+	return func(store string, args ...string) *exec.Cmd {
+		return exec.Command("swaybook", append([]string{"--quiet", "--store", store, "ingest", files, "--periods", periods, "--workers", "1"}, args...)...)
 	}
-	undisturbed := filepath.Join(dir, "undisturbed.db")
-	if out, err := ingest(undisturbed).CombinedOutput(); err != nil {
+}
+
+func mustRun(t *testing.T, cmd *exec.Cmd) {
+	t.Helper()
+	if out, err := cmd.CombinedOutput(); err != nil {
 		t.Fatalf("%v\n%s", err, out)
 	}
+}
+
+func skipWithoutSignals(t *testing.T) {
+	if runtime.GOOS == "windows" {
+		t.Skip("no signals to send on this system")
+	}
+}
+
+// A process that is stopped in the middle of an ingest, politely or not, leaves
+// whole batches; the next run finishes, and nobody can tell the difference.
+func TestAStoppedIngestIsFinishedByTheNext(t *testing.T) {
+	skipWithoutSignals(t)
+	ingest, dir := slowIngest(t), t.TempDir()
+	undisturbed := filepath.Join(dir, "undisturbed.db")
+	mustRun(t, ingest(undisturbed))
 	want := exported(t, undisturbed)
 
 	for name, sig := range map[string]os.Signal{"kill": os.Kill, "interrupt": os.Interrupt, "terminate": syscall.SIGTERM} {
 		t.Run(name, func(t *testing.T) {
 			store := filepath.Join(dir, name+".db")
-			stop(t, ingest(store), store, sig)
-			if out, err := ingest(store).CombinedOutput(); err != nil {
-				t.Fatalf("%v\n%s", err, out)
-			}
+			stop(t, ingest(store), "after", sig, func() bool { return componentsIn(t.Context(), store) > 0 })
+			mustRun(t, ingest(store))
 			if got := exported(t, store); !bytes.Equal(got, want) {
 				t.Error("the ordinates differ from those of an undisturbed run")
 			}
 		})
 	}
+	// The later stages are the same of every store that holds the files.
+	t.Run("while rotating", func(t *testing.T) {
+		store := filepath.Join(dir, "rotating.db")
+		mustRun(t, ingest(store, "--rotation=false"))
+		for _, sig := range []os.Signal{syscall.SIGTERM, os.Kill} {
+			before := rotatedIn(t.Context(), store)
+			stop(t, ingest(store), "while rotating", sig, func() bool { return rotatedIn(t.Context(), store) > before })
+		}
+		mustRun(t, ingest(store))
+		if got := exported(t, store); !bytes.Equal(got, want) {
+			t.Error("the ordinates differ from those of an undisturbed run")
+		}
+	})
+	t.Run("while computing", func(t *testing.T) {
+		other := func(store string) *exec.Cmd { return ingest(store, "--recipe", "as-delivered") }
+		fresh, store := filepath.Join(dir, "fresh.db"), undisturbed
+		mustRun(t, other(fresh))
+		for _, sig := range []os.Signal{syscall.SIGTERM, os.Kill} {
+			before := solvedAnewIn(t.Context(), store)
+			stop(t, other(store), "while computing", sig, func() bool { return solvedAnewIn(t.Context(), store) > before })
+			if got := exported(t, store); !bytes.Equal(got, want) {
+				t.Error("a generation that is not complete can be seen")
+			}
+		}
+		mustRun(t, other(store))
+		if got := exported(t, store); !bytes.Equal(got, exported(t, fresh)) || bytes.Equal(got, want) {
+			t.Error("the ordinates differ from those of an undisturbed run, or not from those of the former recipe")
+		}
+	})
 }
 
 // What somebody stopped says in which stage it was.
@@ -75,52 +117,95 @@ func TestInterruptionNamesTheStage(t *testing.T) {
 	}
 }
 
-// stop starts the command and sends it the signal as soon as its store holds
-// something.
-func stop(t *testing.T, cmd *exec.Cmd, store string, sig os.Signal) {
+// process is a command at work.
+type process struct {
+	*exec.Cmd
+	stderr bytes.Buffer
+	ended  chan error
+}
+
+// begin starts the command and waits for what another process does that tells nobody.
+func begin(t *testing.T, cmd *exec.Cmd, begun func() bool) *process {
 	t.Helper()
-	var stderr bytes.Buffer
-	cmd.Stderr = &stderr
+	p := &process{Cmd: cmd, ended: make(chan error, 1)}
+	cmd.Stderr = &p.stderr
 	if err := cmd.Start(); err != nil {
 		t.Fatal(err)
 	}
-	ended := make(chan error, 1)
-	go func() { ended <- cmd.Wait() }()
-	// Another process's store tells nobody that it grew.
-	for tick := time.NewTicker(2 * time.Millisecond); componentsIn(t.Context(), store) == 0; {
+	go func() { p.ended <- cmd.Wait() }()
+	tick := time.NewTicker(2 * time.Millisecond)
+	defer tick.Stop()
+	for !begun() {
 		select {
-		case err := <-ended:
-			t.Fatalf("the run ended before it stored anything: %v, %s", err, stderr.String())
+		case err := <-p.ended:
+			t.Fatalf("the run ended before it was so far: %v, %s", err, p.stderr.String())
 		case <-tick.C:
 		}
 	}
-	if err := cmd.Process.Signal(sig); err != nil {
+	return p
+}
+
+// stop starts the command and sends it the signal as soon as it has begun. One that can
+// be caught ends it in order, and it says where it stopped.
+func stop(t *testing.T, cmd *exec.Cmd, where string, sig os.Signal, begun func() bool) {
+	t.Helper()
+	p := begin(t, cmd, begun)
+	if err := p.Process.Signal(sig); err != nil {
 		t.Fatal(err)
 	}
-	exit, ok := errors.AsType[*exec.ExitError](<-ended)
+	exit, ok := errors.AsType[*exec.ExitError](<-p.ended)
 	if !ok {
 		t.Fatal("the run ended before it was stopped")
 	}
-	if sig != os.Kill {
-		if exit.ExitCode() != exitInterrupted || !strings.Contains(stderr.String(), "run the same command again") {
-			t.Errorf("exit code %d, stderr %q", exit.ExitCode(), stderr.String())
-		}
+	if said := p.stderr.String(); sig != os.Kill &&
+		(exit.ExitCode() != exitInterrupted || !strings.Contains(said, "interrupted "+where) || !strings.Contains(said, "run the same command again")) {
+		t.Errorf("exit code %d, stderr %q", exit.ExitCode(), said)
 	}
-	t.Logf("stopped with %d components stored", componentsIn(t.Context(), store))
+	t.Logf("%v: %s", sig, p.stderr.String())
 }
 
-func componentsIn(ctx context.Context, path string) (n int) {
+// counted opens the store and returns what f counts in it, 0 as long as there is none.
+func counted(ctx context.Context, path string, f func(*db.Store) int) int {
 	store, err := db.Open(ctx, path, pipeline.SolverVersion)
 	if err != nil {
 		return 0
 	}
 	defer store.Close()
-	_ = store.View(ctx, func(v *db.Snapshot) error {
-		components, err := v.Components(ctx, 0)
-		n = len(components)
-		return err
+	return f(store)
+}
+
+func componentsIn(ctx context.Context, path string) int {
+	return counted(ctx, path, func(store *db.Store) (n int) {
+		_ = store.View(ctx, func(v *db.Snapshot) error {
+			components, err := v.Components(ctx, 0)
+			n = len(components)
+			return err
+		})
+		return n
 	})
-	return n
+}
+
+func rotatedIn(ctx context.Context, path string) int {
+	return counted(ctx, path, func(store *db.Store) (n int) {
+		_ = store.View(ctx, func(v *db.Snapshot) error {
+			peaks, err := v.RotatedPeaks(ctx, db.RoleRotD50)
+			n = len(peaks)
+			return err
+		})
+		return n
+	})
+}
+
+// solvedAnewIn counts the components that have their spectra in the second generation.
+func solvedAnewIn(ctx context.Context, path string) int {
+	components := componentsIn(ctx, path)
+	return counted(ctx, path, func(store *db.Store) int {
+		left, err := store.Unsolved(ctx, 2)
+		if err != nil {
+			return 0
+		}
+		return components - len(left)
+	})
 }
 
 func exported(t *testing.T, store string) []byte {
