@@ -4,6 +4,7 @@ go 1.26.0
 
 require (
 	github.com/expr-lang/expr v1.17.8
+	github.com/gofrs/flock v0.13.2
 	github.com/klauspost/compress v1.20.4
 	github.com/pelletier/go-toml/v2 v2.4.3
 	github.com/rogpeppe/go-internal v1.16.0

@@ -10,6 +10,7 @@ import (
 	"os"
 	"slices"
 	"strings"
+	"time"
 
 	"github.com/urfave/cli/v2"
 
@@ -69,6 +70,19 @@ func newLogger(c *cli.Context) (*slog.Logger, error) {
 		return slog.New(slog.NewJSONHandler(c.App.ErrWriter, options)), nil
 	}
 	return nil, usagef("--log %s: want text or json", c.String("log"))
+}
+
+// holder is this process as a lock names it.
+func holder(since time.Time) db.Holder {
+	host, err := os.Hostname()
+	if err != nil {
+		host = "of unknown name" // no reason not to work
+	}
+	words := []string{"swaybook"}
+	for _, word := range os.Args[1:] {
+		words = append(words, quoted(word))
+	}
+	return db.Holder{PID: os.Getpid(), Host: host, Since: since, Command: strings.Join(words, " ")}
 }
 
 // noArguments refuses words that a command would silently ignore.

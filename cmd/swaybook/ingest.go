@@ -120,7 +120,7 @@ func (o *ingestOptions) readRecipe(name string) error {
 func pipelineOptions(store string, m *monitor) pipeline.Options {
 	return pipeline.Options{
 		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Recomputed: m.component, Rotated: m.record, Doubted: m.doubt,
-		Own: map[string]string{store: "the store itself", store + "-wal": "the store's log", store + "-shm": "the store's log"},
+		Own: db.Files(store),
 	}
 }
 
@@ -169,8 +169,13 @@ func (o *ingestOptions) readCatalogue(name string) error {
 	return err
 }
 
-// runIngest fills the store and prints the summary.
+// runIngest fills the store and prints the summary. No other run may do so meanwhile.
 func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
+	lock, err := db.TakeLock(ctx, o.store, holder(o.pipeline.Started))
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, lock.Release()) }()
 	store, err := db.Create(ctx, o.store, pipeline.SolverVersion)
 	if err != nil {
 		return err

@@ -11,6 +11,7 @@ import (
 
 	"github.com/urfave/cli/v2"
 
+	"swaybook/db"
 	"swaybook/query"
 )
 
@@ -24,6 +25,7 @@ const (
 	exitFailed      = 1
 	exitUsage       = 2
 	exitRejected    = 3 // done, but some files were rejected
+	exitLocked      = 5 // another run holds the store
 	exitInterrupted = 130
 )
 
@@ -80,6 +82,9 @@ func exitCode(err error, stderr io.Writer) int {
 	if isUsage(err) {
 		return exitUsage
 	}
+	if _, ok := errors.AsType[*db.LockedError](err); ok {
+		return exitLocked
+	}
 	return exitFailed
 }
 
@@ -97,7 +102,8 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Version: version,
 		Description: "Reads record files into a store, computes their response spectra, and answers for a structure\n" +
 			"what displacement, base shear and base moment the recorded motions produced.\n\n" +
-			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected; 130 interrupted.\n\n" + caution,
+			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected;\n" +
+			"5 another run holds the store; 130 interrupted.\n\n" + caution,
 		Flags:  globalFlags(),
 		Before: checkGlobalFlags,
 		// The name of a file may hold commas; lists are for their own flags to read.

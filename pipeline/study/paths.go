@@ -52,6 +52,7 @@ func (s *Study) own() []use {
 		for _, tail := range []string{"-wal", "-shm", "-journal"} { // SQLite's
 			out = append(out, use{Text{Value: s.Store.Value + tail}, "the store's log"})
 		}
+		out = append(out, use{Text{Value: s.Store.Value + ".lock"}, "the store's lock"})
 	}
 	return out
 }

@@ -164,6 +164,7 @@ func TestMistakes(t *testing.T) {
 		{"a list that is an output", least + "periods = \"@p.txt\"\n[spectrum.a]\nfiles = \"p.txt\"\n", "x.toml:7: spectrum.a.files: p.txt is the path of periods in line 5 too"},
 		{"the study itself", least + "metrics = \"x.toml\"\n", "x.toml:5: metrics: x.toml is the path of the study itself too"},
 		{"the store's log", least + "metrics = \"s.db-wal\"\n", "x.toml:5: metrics: s.db-wal is the path of the store's log too"},
+		{"the store's lock", least + "metrics = \"s.db.lock\"\n", "x.toml:5: metrics: s.db.lock is the path of the store's lock too"},
 		{"a store that is a source", "name = \"n\"\nstore = \"r\"\nsources = [\"r\"]\nrecipe = \"standard\"\n", "x.toml:2: store: r is the path of sources in line 3 too"},
 		{"several, by line", "keep = 0\nname = 1\nstore = \"s.db\"\nsources = [\"r\"]\nrecpie = \"standard\"\n", "x.toml: recipe: is missing\nx.toml:1: keep: 0 is outside 1 to 1000000\nx.toml:2: name: want a text in quotes, found a number\nx.toml:5: recpie: unknown key (did you mean recipe?)"},
 	} {
