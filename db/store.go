@@ -180,13 +180,16 @@ func openReader(ctx context.Context, path, solver string) (*Store, error) {
 	return openWriter(ctx, path, solver)
 }
 
+// frozen reads a file that nobody writes to.
+const frozen = "immutable=1&_pragma=query_only(1)"
+
 // openFrozen opens a store that this process may not write to, nor its folder,
 // where the log would be. Nobody is writing to it as long as there is no log.
 func openFrozen(ctx context.Context, path string, denied *Store) (*Store, error) {
 	if err := denied.Close(); err != nil {
 		return nil, err
 	}
-	read, err := sql.Open("sqlite", dsn(path, "ro", busyTimeoutMS, "immutable=1&_pragma=query_only(1)"))
+	read, err := sql.Open("sqlite", dsn(path, "ro", busyTimeoutMS, frozen))
 	if err != nil {
 		return nil, err
 	}

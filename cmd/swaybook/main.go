@@ -113,6 +113,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			queryCommand(),
 			exportCommand(),
 			reprocessCommand(),
+			backupCommand(),
 			formatsCommand(),
 			recipesCommand(),
 			demoCommand(),
