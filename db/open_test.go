@@ -21,8 +21,13 @@ import (
 
 func TestEveryConnectionHasThePragmas(t *testing.T) {
 	s := newStore(t)
-	want := map[string]string{"journal_mode": "wal", "foreign_keys": "1", "synchronous": "1", "busy_timeout": fmt.Sprint(busyTimeoutMS)}
+	want := map[string]string{"journal_mode": "wal", "foreign_keys": "1", "synchronous": "2", "busy_timeout": fmt.Sprint(busyTimeoutMS)}
 	for name, handle := range map[string]*sql.DB{"write": s.write, "read": s.read} {
+		// The last two are for macOS; elsewhere they do nothing.
+		want["fullfsync"], want["checkpoint_fullfsync"] = "0", "0"
+		if name == "write" {
+			want["fullfsync"], want["checkpoint_fullfsync"] = "1", "1"
+		}
 		// Two connections at once, so that the second is not the first again.
 		for range 2 {
 			conn, err := handle.Conn(t.Context())

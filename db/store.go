@@ -79,11 +79,19 @@ func (s *Store) Path() string { return s.path }
 // hold the upper levels of the indices.
 const writing = "_txlock=immediate&_pragma=cache_size(-8192)"
 
+// A commit that is durable waits until its log is on the disk, on macOS in the drive and
+// not in the drive's memory: what a run reports as stored no power cut takes back. One that
+// is only whole may be lost, with all of its kind that came later; neither damages the file.
+const (
+	durable = "&_pragma=synchronous(full)&_pragma=fullfsync(1)&_pragma=checkpoint_fullfsync(1)"
+	whole   = "&_pragma=synchronous(normal)"
+)
+
 func openWriter(ctx context.Context, path, solver string) (*Store, error) {
 	if err := refuseForeign(ctx, path); err != nil {
 		return nil, err
 	}
-	write, err := sql.Open("sqlite", dsn(path, "rwc", busyTimeoutMS, writing))
+	write, err := sql.Open("sqlite", dsn(path, "rwc", busyTimeoutMS, writing+durable))
 	if err != nil {
 		return nil, err
 	}
@@ -224,7 +232,7 @@ func openPool(path string) (*Store, error) {
 	if err != nil {
 		return nil, err
 	}
-	aside, err := sql.Open("sqlite", dsn(path, "rw", asideTimeoutMS, writing))
+	aside, err := sql.Open("sqlite", dsn(path, "rw", asideTimeoutMS, writing+whole))
 	if err != nil {
 		return nil, errors.Join(err, read.Close())
 	}
@@ -234,12 +242,9 @@ func openPool(path string) (*Store, error) {
 
 // dsn is a file: URI, since a plain path would drop the mode without a word.
 // The pragmas of a connection stand in it, so that each of a pool has them; the
-// write-ahead log is the file's.
-// synchronous NORMAL with a write-ahead log keeps the file consistent through
-// a power cut and can lose the last batches only whole.
+// write-ahead log is the file's. No pragma may stand in it twice: the driver sorts them.
 func dsn(path, mode string, timeoutMS int, more string) string {
-	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)"+
-		"&_pragma=synchronous(normal)", timeoutMS)
+	pragmas := fmt.Sprintf("_pragma=busy_timeout(%d)&_pragma=foreign_keys(1)", timeoutMS)
 	u := url.URL{Scheme: "file", Opaque: url.PathEscape(filepath.ToSlash(path))}
 	return u.String() + "?mode=" + mode + "&" + pragmas + "&" + more
 }
