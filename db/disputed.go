@@ -30,16 +30,16 @@ func (s *Snapshot) Disputed(ctx context.Context) ([]Disputed, error) {
 	// By the id that is shown: of an event, of the one that stands for it.
 	rows, err := s.tx.QueryContext(ctx, `WITH shown AS (
 			SELECT t.subject, coalesce(e.primary_id, t.subject_id) AS id, t.attribute, t.stated_by, t.value, t.source
-			FROM statement t LEFT JOIN event e ON t.subject = 'event' AND e.id = t.subject_id
+			FROM `+s.shown("statement")+` t LEFT JOIN `+s.shown("event")+` e ON t.subject = 'event' AND e.id = t.subject_id
 			UNION ALL
-			SELECT 'event', coalesce(primary_id, id), '`+AttributeCode+`', iif(primary_id IS NULL, '`+firstCode+`', '`+otherCode+`'), code, '' FROM event
+			SELECT 'event', coalesce(primary_id, id), '`+AttributeCode+`', iif(primary_id IS NULL, '`+firstCode+`', '`+otherCode+`'), code, '' FROM `+s.shown("event")+`
 		), several AS (
 			SELECT subject, id, attribute FROM shown GROUP BY subject, id, attribute HAVING count(DISTINCT value) > 1
 		)
 		SELECT subject, id, attribute, stated_by, value, source,
-			coalesce(CASE subject WHEN 'event' THEN (SELECT code FROM event WHERE event.id = several.id)
-				WHEN 'station' THEN (SELECT ltrim(network || '.' || code, '.') FROM station WHERE station.id = several.id)
-				ELSE (SELECT code FROM record WHERE record.id = several.id) END, '') AS of
+			coalesce(CASE subject WHEN 'event' THEN (SELECT o.code FROM `+s.shown("event")+` o WHERE o.id = several.id)
+				WHEN 'station' THEN (SELECT ltrim(o.network || '.' || o.code, '.') FROM `+s.shown("station")+` o WHERE o.id = several.id)
+				ELSE (SELECT o.code FROM `+s.shown("record")+` o WHERE o.id = several.id) END, '') AS of
 		FROM several JOIN shown USING (subject, id, attribute) ORDER BY subject, of, id, attribute`)
 	if err != nil {
 		return nil, fmt.Errorf("read statements: %w", err)
@@ -81,10 +81,10 @@ type ScaledVersions struct {
 // larger than the other, by the records' codes. Polarity does not count.
 func (s *Snapshot) ScaledVersions(ctx context.Context, share float64) ([]ScaledVersions, error) {
 	rows, err := s.tx.QueryContext(ctx, `SELECT a.role, ra.code, rb.code, fa.path, fb.path, l.scale
-		FROM likeness l
-		JOIN component a ON a.id = l.first_id JOIN component b ON b.id = l.second_id AND b.motion_id = a.motion_id
-		JOIN record ra ON ra.id = a.record_id JOIN record rb ON rb.id = b.record_id
-		JOIN source_file fa ON fa.id = a.source_id JOIN source_file fb ON fb.id = b.source_id
+		FROM `+s.shown("likeness")+` l
+		JOIN `+s.shown("component")+` a ON a.id = l.first_id JOIN `+s.shown("component")+` b ON b.id = l.second_id AND b.motion_id = a.motion_id
+		JOIN `+s.shown("record")+` ra ON ra.id = a.record_id JOIN `+s.shown("record")+` rb ON rb.id = b.record_id
+		JOIN `+s.shown("source_file")+` fa ON fa.id = a.source_id JOIN `+s.shown("source_file")+` fb ON fb.id = b.source_id
 		WHERE abs(l.scale) NOT BETWEEN 1 / (1 + ?1) AND 1 + ?1 ORDER BY ra.code, rb.code, a.role`, share)
 	if err != nil {
 		return nil, fmt.Errorf("read versions: %w", err)

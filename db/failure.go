@@ -25,10 +25,11 @@ func (t *Tx) IsBarren(ctx context.Context, generationID int64) (barren bool, err
 	return barren, nil
 }
 
-// failures are the components on which the published recipe cannot be carried out, as
-// rejections of it.
-const failures = `SELECT s.path, c.source_line, r.code || ' ' || c.role || ': ' || x.failure, s.sha256
-	FROM generation g JOIN computed k ON k.generation_id = g.id AND g.state = 'published'
-	JOIN computation x ON x.id = k.computation_id AND x.failure IS NOT NULL
-	JOIN component c ON c.record_id = k.record_id AND c.role = k.role
-	JOIN record r ON r.id = k.record_id JOIN source_file s ON s.id = c.source_id`
+// failures are the components on which the recipe cannot be carried out, as rejections of
+// it.
+func failures(shown tables) string {
+	return `SELECT s.path, c.source_line, r.code || ' ' || c.role || ': ' || x.failure, s.sha256
+		FROM ` + shown("computed") + ` k JOIN computation x ON x.id = k.computation_id AND x.failure IS NOT NULL
+		JOIN ` + shown("component") + ` c ON c.record_id = k.record_id AND c.role = k.role
+		JOIN ` + shown("record") + ` r ON r.id = k.record_id JOIN ` + shown("source_file") + ` s ON s.id = c.source_id`
+}

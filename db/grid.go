@@ -55,14 +55,22 @@ func (r Recipe) hash() string {
 	return hex.EncodeToString(sum[:])
 }
 
-// Published returns the published generation; ok is false in an empty store.
-func (t *Tx) Published(ctx context.Context) (g Generation, ok bool, err error) {
-	return published(ctx, t.tx)
+// Current returns the generation of the published edition or, before there is one, of the
+// store's first run; ok is false in an empty store.
+func (t *Tx) Current(ctx context.Context) (g Generation, ok bool, err error) {
+	e, ok, err := t.PublishedEdition(ctx)
+	if err == nil && !ok {
+		e.GenerationID, err = t.idOf(ctx, `SELECT coalesce(min(id), 0) FROM generation`)
+	}
+	if err != nil || e.GenerationID == 0 {
+		return g, false, err
+	}
+	g, err = generation(ctx, t.tx, e.GenerationID)
+	return g, true, err
 }
 
 // PutGeneration returns the generation of a recipe, grid and solver, which it begins
-// where there is none. The store's first is published at once, another when Publish
-// is called.
+// where there is none.
 func (t *Tx) PutGeneration(ctx context.Context, recipe Recipe, grid Grid, solver string) (Generation, error) {
 	g := Generation{Recipe: recipe, Solver: solver, Grid: grid}
 	recipeID, err := t.idOf(ctx, `SELECT id FROM recipe WHERE hash = ?`, recipe.hash())
@@ -81,8 +89,7 @@ func (t *Tx) PutGeneration(ctx context.Context, recipe Recipe, grid Grid, solver
 	}
 	g.ID, err = t.idOf(ctx, `SELECT id FROM generation WHERE recipe_id = ? AND grid_id = ? AND solver = ?`, recipeID, gridID, solver)
 	if err == nil && g.ID == 0 {
-		g.ID, err = t.insert(ctx, `INSERT INTO generation (recipe_id, grid_id, solver, state)
-			SELECT ?, ?, ?, iif(EXISTS (SELECT 1 FROM generation), 'building', 'published')`, recipeID, gridID, solver)
+		g.ID, err = t.insert(ctx, `INSERT INTO generation (recipe_id, grid_id, solver) VALUES (?, ?, ?)`, recipeID, gridID, solver)
 	}
 	if err != nil {
 		return g, fmt.Errorf("put generation: %w", err)
@@ -105,18 +112,6 @@ func idOf(ctx context.Context, q queryer, query string, args ...any) (int64, err
 		return 0, err
 	}
 	return ids[0], nil
-}
-
-// Publish makes a generation the one that is asked, instead of the one before.
-func (t *Tx) Publish(ctx context.Context, generationID int64) error {
-	err := t.exec(ctx, `UPDATE generation SET state = 'superseded' WHERE state = 'published' AND id <> ?`, generationID)
-	if err == nil {
-		err = t.exec(ctx, `UPDATE generation SET state = 'published' WHERE id = ? AND state <> 'published'`, generationID)
-	}
-	if err != nil {
-		return fmt.Errorf("publish generation: %w", err)
-	}
-	return nil
 }
 
 func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
@@ -142,23 +137,15 @@ func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
 	return id, nil
 }
 
-func published(ctx context.Context, q queryer) (g Generation, ok bool, err error) {
-	rows, err := q.QueryContext(ctx, `SELECT g.id, r.name, r.steps, g.solver, g.grid_id
-		FROM generation g JOIN recipe r ON r.id = g.recipe_id WHERE g.state = 'published'`)
+func generation(ctx context.Context, q queryer, id int64) (g Generation, err error) {
+	var gridID int64
+	err = q.QueryRowContext(ctx, `SELECT g.id, r.name, r.steps, g.solver, g.grid_id FROM generation g JOIN recipe r ON r.id = g.recipe_id WHERE g.id = ?`, id).
+		Scan(&g.ID, &g.Recipe.Name, &g.Recipe.Steps, &g.Solver, &gridID)
 	if err != nil {
-		return g, false, err
+		return g, fmt.Errorf("read generation: %w", err)
 	}
-	type row struct {
-		Generation
-		gridID int64
-	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.ID, &v.Recipe.Name, &v.Recipe.Steps, &v.Solver, &v.gridID} })
-	if err != nil || len(found) == 0 {
-		return g, false, err
-	}
-	g = found[0].Generation
-	g.Grid, err = readGrid(ctx, q, found[0].gridID)
-	return g, true, err
+	g.Grid, err = readGrid(ctx, q, gridID)
+	return g, err
 }
 
 func readGrid(ctx context.Context, q queryer, id int64) (Grid, error) {

@@ -56,7 +56,7 @@ func (s *Snapshot) Components(ctx context.Context, details Details) ([]HeldCompo
 // ComponentsOf returns the components that the file with this digest gave, as
 // the transaction sees them.
 func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
-	s := Snapshot{tx: t.tx.tx, Generation: g}
+	s := Snapshot{tx: t.tx.tx, Generation: g, shown: working(g.ID)}
 	return s.selectComponents(ctx, AllDetails, sha256)
 }
 
@@ -67,7 +67,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 	condition := ""
 	var args []any
 	if sha256 != "" {
-		condition = ` WHERE c.source_id = (SELECT id FROM source_file WHERE sha256 = ?)`
+		condition = ` WHERE c.source_id = (SELECT id FROM ` + s.shown("source_file") + ` WHERE sha256 = ?)`
 		args = append(args, sha256)
 	}
 	records, err := s.records(ctx, details, condition, args)
@@ -75,7 +75,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 		return nil, err
 	}
 	var n int
-	if err := s.tx.QueryRowContext(ctx, `SELECT count(*) FROM component c`+condition, args...).Scan(&n); err != nil {
+	if err := s.tx.QueryRowContext(ctx, `SELECT count(*) FROM `+s.shown("component")+` c`+condition, args...).Scan(&n); err != nil {
 		return nil, fmt.Errorf("count components: %w", err)
 	}
 	var conditioned map[roleOf]*Conditioning
@@ -99,7 +99,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 			return nil, err
 		}
 	}
-	rows, err := s.tx.QueryContext(ctx, componentQuery(details, s.Generation.ID)+condition+` ORDER BY r.code, c.role`, args...)
+	rows, err := s.tx.QueryContext(ctx, s.componentQuery(details)+condition+` ORDER BY r.code, c.role`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read components: %w", err)
 	}
@@ -144,11 +144,11 @@ type findingOf struct {
 // ofComputed joins what is computed in the generation of the components that meet the
 // condition, where there is one, to a table of it under the name x.
 func (s *Snapshot) ofComputed(table, condition string, args []any) (string, []any) {
-	text := ` FROM computed k JOIN ` + table + ` x ON x.computation_id = k.computation_id WHERE k.generation_id = ?`
+	text := ` FROM ` + s.shown("computed") + ` k JOIN ` + table + ` x ON x.computation_id = k.computation_id WHERE true`
 	if condition != "" {
-		text += ` AND k.record_id IN (SELECT c.record_id FROM component c` + condition + `)`
+		text += ` AND k.record_id IN (SELECT c.record_id FROM ` + s.shown("component") + ` c` + condition + `)`
 	}
-	return text, append([]any{s.Generation.ID}, args...)
+	return text, args
 }
 
 // conditionings are those of the generation.
@@ -178,7 +178,7 @@ func (s *Snapshot) conditionings(ctx context.Context, condition string, args []a
 // findings are those of the components that meet the condition, in the order of flags.
 func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (map[roleOf][]Finding, error) {
 	rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role, f.flag, f.value, f.bound, f.words
-		FROM finding f JOIN component c ON c.id = f.component_id`+condition+` ORDER BY f.component_id, f.flag`, args...)
+		FROM `+s.shown("finding")+` f JOIN `+s.shown("component")+` c ON c.id = f.component_id`+condition+` ORDER BY f.component_id, f.flag`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read findings: %w", err)
 	}
@@ -220,10 +220,10 @@ func (s *Snapshot) addConditionedFindings(ctx context.Context, to map[roleOf]*Co
 func (s *Snapshot) Flag(ctx context.Context, components []HeldComponent, flags []string) error {
 	delivered, left := map[roleOf][]Finding{}, map[roleOf][]Finding{}
 	for _, flag := range flags {
-		err := s.flag(ctx, delivered, flag, `SELECT c.record_id, c.role FROM finding f JOIN component c ON c.id = f.component_id WHERE f.flag = ?`, flag)
+		err := s.flag(ctx, delivered, flag, `SELECT c.record_id, c.role FROM `+s.shown("finding")+` f JOIN `+s.shown("component")+` c ON c.id = f.component_id WHERE f.flag = ?`, flag)
 		if err == nil {
-			err = s.flag(ctx, left, flag, `SELECT k.record_id, k.role FROM conditioned_finding f JOIN computed k ON k.computation_id = f.computation_id
-				WHERE k.generation_id = ? AND f.flag = ?`, s.Generation.ID, flag)
+			err = s.flag(ctx, left, flag, `SELECT k.record_id, k.role FROM conditioned_finding f JOIN `+s.shown("computed")+` k ON k.computation_id = f.computation_id
+				WHERE f.flag = ?`, flag)
 		}
 		if err != nil {
 			return fmt.Errorf("read findings: %w", err)
@@ -324,17 +324,17 @@ func (v *componentRow) columns(d Details) (names string, into []any) {
 }
 
 // componentQuery is the query up to its condition, without parameters.
-func componentQuery(d Details, generation int64) string {
+func (s *Snapshot) componentQuery(d Details) string {
 	names, _ := new(componentRow).columns(d)
-	text := `SELECT ` + names + ` FROM component c JOIN record r ON r.id = c.record_id`
+	text := `SELECT ` + names + ` FROM ` + s.shown("component") + ` c JOIN ` + s.shown("record") + ` r ON r.id = c.record_id`
 	if d&DetailPeaks != 0 {
-		text += fmt.Sprintf(` LEFT JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = %d`, generation)
+		text += ` LEFT JOIN ` + s.shown("computed") + ` k ON k.record_id = c.record_id AND k.role = c.role`
 		for _, m := range [][2]string{{"pga", MeasurePGA}, {"pgv", MeasurePGV}, {"pgd", MeasurePGD}} {
 			text += fmt.Sprintf(` LEFT JOIN measure %[1]s ON %[1]s.computation_id = k.computation_id AND %[1]s.name = '%[2]s'`, m[0], m[1])
 		}
 	}
 	if d&DetailChannel != 0 {
-		text += ` JOIN source_file f ON f.id = c.source_id`
+		text += ` JOIN ` + s.shown("source_file") + ` f ON f.id = c.source_id`
 	}
 	return text
 }
@@ -345,7 +345,7 @@ func (s *Snapshot) records(ctx context.Context, d Details, condition string, arg
 		if condition == "" {
 			return ""
 		}
-		return ` WHERE id IN (SELECT ` + id + ` FROM record r JOIN component c ON c.record_id = r.id` + condition + `)`
+		return ` WHERE id IN (SELECT ` + id + ` FROM ` + s.shown("record") + ` r JOIN ` + s.shown("component") + ` c ON c.record_id = r.id` + condition + `)`
 	}
 	events, err := s.events(ctx, where("r.event_id"), args)
 	if err != nil {
@@ -359,7 +359,7 @@ func (s *Snapshot) records(ctx context.Context, d Details, condition string, arg
 	}
 	var v recordRow
 	names, into := v.columns(d)
-	rows, err := s.tx.QueryContext(ctx, `SELECT `+names+` FROM record`+where("r.id"), args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT `+names+` FROM `+s.shown("record")+where("r.id"), args...)
 	if err != nil {
 		return nil, fmt.Errorf("read records: %w", err)
 	}

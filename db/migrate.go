@@ -91,6 +91,9 @@ func applyNext(ctx context.Context, write *sql.DB, all []step, solver string) (d
 	return false, tx.Commit()
 }
 
+// firstEditions is the number of the migration that made editions.
+const firstEditions = 12
+
 // checkUsable refuses a store that this program could not use once it is brought
 // up to date: the program that made it still can.
 func checkUsable(ctx context.Context, tx *sql.Tx, applied int, solver string) error {
@@ -98,7 +101,11 @@ func checkUsable(ctx context.Context, tx *sql.Tx, applied int, solver string) er
 		return nil
 	}
 	var g Generation
-	err := tx.QueryRowContext(ctx, `SELECT solver FROM generation WHERE state = 'published'`).Scan(&g.Solver)
+	query := `SELECT solver FROM generation WHERE state = 'published'`
+	if applied >= firstEditions {
+		query = `SELECT g.solver FROM generation g JOIN edition e ON e.generation_id = g.id AND e.state = '` + EditionPublished + `'`
+	}
+	err := tx.QueryRowContext(ctx, query).Scan(&g.Solver)
 	if errors.Is(err, sql.ErrNoRows) {
 		return nil
 	}

@@ -72,9 +72,9 @@ func (s *Snapshot) OffGrid(ctx context.Context, role string, records, blocks []i
 	// A computation's blocks stand together. They are walked through, since to look each of
 	// hundreds up costs more; the plus keeps the list from being used to do that.
 	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, o.block_id, o.sd_m FROM json_each(?1) r
-		CROSS JOIN computed k ON k.record_id = r.value AND k.role = ?2 AND k.generation_id = ?3
-		CROSS JOIN off_grid o ON o.computation_id = k.computation_id AND o.block_id BETWEEN (SELECT min(value) FROM json_each(?4)) AND (SELECT max(value) FROM json_each(?4))
-			AND +o.block_id IN (SELECT value FROM json_each(?4))`, string(wanted), role, s.Generation.ID, string(among))
+		CROSS JOIN `+s.shown("computed")+` k ON k.record_id = r.value AND k.role = ?2
+		CROSS JOIN off_grid o ON o.computation_id = k.computation_id AND o.block_id BETWEEN (SELECT min(value) FROM json_each(?3)) AND (SELECT max(value) FROM json_each(?3))
+			AND +o.block_id IN (SELECT value FROM json_each(?3))`, string(wanted), role, string(among))
 	if err != nil {
 		return fmt.Errorf("read ordinates off the grid: %w", err)
 	}

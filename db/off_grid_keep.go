@@ -119,8 +119,7 @@ func (s *Snapshot) KeepOffGrid(ctx context.Context, blocks []OffGridBlock, rows 
 	return s.store.keep(ctx, func(t *Tx) error {
 		kept := map[int64]int{}
 		for i := range rows {
-			of, err := idOf(ctx, s.tx, `SELECT computation_id FROM computed WHERE record_id = ? AND role = ? AND generation_id = ?`,
-				rows[i].RecordID, rows[i].Role, s.Generation.ID)
+			of, err := idOf(ctx, s.tx, `SELECT computation_id FROM `+s.shown("computed")+` WHERE record_id = ? AND role = ?`, rows[i].RecordID, rows[i].Role)
 			if err == nil && of != 0 {
 				err = t.keepOffGrid(ctx, of, blocks, rows[i].SD, kept)
 			}

@@ -107,9 +107,9 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 }
 
 // readSeries reads the samples of one component and what goes with them.
-func readSeries(ctx context.Context, q queryer, condition string, args ...any) (m StoredMotion, err error) {
+func readSeries(ctx context.Context, q queryer, shown tables, condition string, args ...any) (m StoredMotion, err error) {
 	err = q.QueryRowContext(ctx, `SELECT c.role, c.samples, coalesce(s.sha256, ''), s.data, c.step_s, c.processing, c.low_cut_hz, c.high_cut_hz
-		FROM component c LEFT JOIN series s ON s.id = c.series_id WHERE `+condition, args...).
+		FROM `+shown("component")+` c LEFT JOIN series s ON s.id = c.series_id WHERE `+condition, args...).
 		Scan(&m.role, &m.samples, &m.digest, &m.data, &m.stepS, &m.state, &m.lowCutHz, &m.highCutHz)
 	if err != nil {
 		return m, fmt.Errorf("read samples: %w", err)
@@ -118,7 +118,7 @@ func readSeries(ctx context.Context, q queryer, condition string, args ...any) (
 }
 
 func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64) (StoredMotion, error) {
-	m, err := readSeries(ctx, tx, `c.id = ?`, componentID)
+	m, err := readSeries(ctx, tx, working(g.ID), `c.id = ?`, componentID)
 	if err != nil {
 		return m, err
 	}

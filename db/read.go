@@ -8,39 +8,81 @@ import (
 	"time"
 )
 
-// Snapshot is what a reader sees: one state of the store, whatever is written
-// meanwhile.
+// Snapshot is what a reader sees: one edition, whatever is written meanwhile.
 type Snapshot struct {
 	tx       *sql.Tx
 	store    *Store
+	shown    tables
 	reserved []OffGridBlock // by ReserveOffGrid
-	// Generation is the published one.
-	Generation Generation
+
+	Edition    Edition
+	Generation Generation // the edition's
 }
 
 // ErrEmpty says that nothing has been ingested into the store yet.
 var ErrEmpty = errors.New("store is empty: ingest record files first")
 
-// View runs f on a snapshot. The error is ErrEmpty where nothing is published.
+// ErrUnpublished says that runs have stored something, and none has come to its end.
+var ErrUnpublished = errors.New("nothing is published yet: the first run has not ended, or was cut short; run it again")
+
+// View runs f on a snapshot of the published edition. The error is ErrEmpty or
+// ErrUnpublished where there is none.
 func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
+	return s.view(ctx, `state = '`+EditionPublished+`'`, nil, f)
+}
+
+// ErrNoEdition says that no edition of a run is kept.
+var ErrNoEdition = errors.New("no such edition")
+
+// ViewAsOf runs f on a snapshot of what was published when a run had ended, or of what that
+// run held back. The error wraps ErrNoEdition where that is not there.
+func (s *Store) ViewAsOf(ctx context.Context, runID int64, f func(*Snapshot) error) error {
+	err := s.view(ctx, `id = (SELECT edition_id FROM run WHERE id = ?)`, []any{runID}, f)
+	if errors.Is(err, ErrEmpty) || errors.Is(err, ErrUnpublished) {
+		return fmt.Errorf("%w: run %d left none, or it is no longer kept", ErrNoEdition, runID)
+	}
+	return err
+}
+
+func (s *Store) view(ctx context.Context, condition string, args []any, f func(*Snapshot) error) error {
 	tx, err := s.read.BeginTx(ctx, nil)
 	if err != nil {
 		return fmt.Errorf("begin reading: %w", explain(err))
 	}
 	defer tx.Rollback()
-	g, ok, err := published(ctx, tx)
+	e, ok, err := editionBy(ctx, tx, condition, args...)
 	if err != nil {
-		return fmt.Errorf("read generation: %w", err)
+		return err
 	}
 	if !ok {
-		return ErrEmpty
+		return nothingShown(ctx, tx)
 	}
-	return f(&Snapshot{tx: tx, store: s, Generation: g})
+	newest, err := idOf(ctx, tx, `SELECT max(id) FROM edition`)
+	if err != nil {
+		return fmt.Errorf("read edition: %w", err)
+	}
+	v := &Snapshot{tx: tx, store: s, shown: ofEdition(e.ID, e.ID == newest), Edition: e}
+	if v.Generation, err = generation(ctx, tx, e.GenerationID); err != nil {
+		return err
+	}
+	return f(v)
+}
+
+// nothingShown says why there is nothing to see.
+func nothingShown(ctx context.Context, q queryer) error {
+	begun, err := idOf(ctx, q, `SELECT coalesce(max(id), 0) FROM component`)
+	switch {
+	case err != nil:
+		return fmt.Errorf("read components: %w", err)
+	case begun != 0:
+		return ErrUnpublished
+	}
+	return ErrEmpty
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce((SELECT p.code FROM event p WHERE p.id = event.primary_id), code), coalesce(name, ''),
-		coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM event`+where, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce((SELECT p.code FROM `+s.shown("event")+` p WHERE p.id = e.primary_id), code), coalesce(name, ''),
+		coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM `+s.shown("event")+` e`+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
 	}
@@ -66,7 +108,7 @@ func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[in
 }
 
 func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s, coalesce(site_class, '') FROM station`+where, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s, coalesce(site_class, '') FROM `+s.shown("station")+``+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read stations: %w", err)
 	}
@@ -95,13 +137,13 @@ type Span struct{ From, To int }
 // record's id. Each text holds one value a period, unless it is damaged. f must
 // not keep it.
 func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
-	what, args := "s.sd_m", []any{s.Generation.ID, dampingPosition, role}
+	what, args := "s.sd_m", []any{dampingPosition, role}
 	if periods != (Span{0, len(s.Generation.Grid.PeriodsS)}) {
-		what = "substr(s.sd_m, ?4, ?5)"
+		what = "substr(s.sd_m, ?3, ?4)"
 		args = append(args, periods.From*OrdinateWidth+1, (periods.To-periods.From)*OrdinateWidth)
 	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, `+what+` FROM computed k CROSS JOIN spectrum s ON s.id = `+firstSpectrum+` + ?2
-		WHERE k.generation_id = ?1 AND k.role = ?3 ORDER BY k.record_id`, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, `+what+` FROM `+s.shown("computed")+` k CROSS JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
+		WHERE k.role = ?2 ORDER BY k.record_id`, args...)
 	if err != nil {
 		return fmt.Errorf("read spectra: %w", err)
 	}
@@ -122,8 +164,8 @@ func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int
 // RotatedPeaks returns the peaks that are stored under a role of RotD, by the
 // record's id: those of the records whose spectra of that role are stored.
 func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Peaks, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, m.name, m.value FROM computed k
-		CROSS JOIN measure m ON m.computation_id = k.computation_id WHERE k.generation_id = ? AND k.role = ?`, s.Generation.ID, role)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, m.name, m.value FROM `+s.shown("computed")+` k
+		CROSS JOIN measure m ON m.computation_id = k.computation_id WHERE k.role = ?`, role)
 	if err != nil {
 		return nil, fmt.Errorf("read rotated peaks: %w", err)
 	}
@@ -158,7 +200,7 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 // Motion returns a component's motion, its samples checked against their digest. The
 // error wraps ErrDamaged where these cannot be had.
 func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, error) {
-	m, err := readSeries(ctx, s.tx, `c.record_id = ? AND c.role = ?`, recordID, role)
+	m, err := readSeries(ctx, s.tx, s.shown, `c.record_id = ? AND c.role = ?`, recordID, role)
 	if err != nil {
 		return Motion{}, err
 	}
@@ -166,13 +208,13 @@ func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Mot
 }
 
 // Rejections returns what could not be stored, and what is stored and could not be
-// conditioned by the published recipe, ordered by path and line.
-func (s *Store) Rejections(ctx context.Context) ([]Rejection, error) {
-	return rejections(ctx, s.read, "UNION ALL "+failures)
+// conditioned, ordered by path and line.
+func (s *Snapshot) Rejections(ctx context.Context) ([]Rejection, error) {
+	return rejections(ctx, s.tx, s.shown, "UNION ALL "+failures(s.shown))
 }
 
-func rejections(ctx context.Context, q queryer, where string, args ...any) ([]Rejection, error) {
-	rows, err := q.QueryContext(ctx, `SELECT path, line, cause, coalesce(sha256, '') FROM rejection `+where+` ORDER BY path, line, cause`, args...)
+func rejections(ctx context.Context, q queryer, shown tables, where string, args ...any) ([]Rejection, error) {
+	rows, err := q.QueryContext(ctx, `SELECT path, line, cause, coalesce(sha256, '') FROM `+shown("rejection")+` `+where+` ORDER BY path, line, cause`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read rejections: %w", explain(err))
 	}

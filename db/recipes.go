@@ -15,8 +15,9 @@ type HeldRecipe struct {
 
 // Recipes returns the recipes of the store's generations, the published one first.
 func (s *Store) Recipes(ctx context.Context) ([]HeldRecipe, error) {
-	rows, err := s.read.QueryContext(ctx, `SELECT r.name, r.steps, r.hash, g.state FROM generation g JOIN recipe r ON r.id = g.recipe_id
-		ORDER BY g.state <> 'published', g.id`)
+	rows, err := s.read.QueryContext(ctx, `SELECT r.name, r.steps, r.hash, coalesce(
+			(SELECT e.state FROM edition e WHERE e.generation_id = g.id ORDER BY e.state = '`+EditionPublished+`' DESC, e.id DESC LIMIT 1), 'building') AS state
+		FROM generation g JOIN recipe r ON r.id = g.recipe_id ORDER BY state <> '`+EditionPublished+`', g.id`)
 	if err != nil {
 		return nil, fmt.Errorf("read recipes: %w", err)
 	}

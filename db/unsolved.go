@@ -17,36 +17,35 @@ type Unsolved struct {
 // Unsolved returns the components that lack their spectra in the generation and are not
 // known to fail, in the order in which they were stored.
 func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, error) {
-	return unsolved(ctx, s.read, generationID, "AND x.failure IS NULL")
+	return unsolved(ctx, s.read, working(generationID), "AND x.failure IS NULL")
 }
 
 // Unsolved returns all components that lack their spectra in the snapshot's generation. It
 // counts first, since as a rule there are none.
 func (s *Snapshot) Unsolved(ctx context.Context) ([]Unsolved, error) {
 	var components, spectra int
-	err := s.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM component),
-		(SELECT count(*) FROM computed k JOIN computation x ON x.id = k.computation_id WHERE k.generation_id = ? AND k.role IN ('`+RoleH1+`', '`+RoleH2+`', '`+RoleV+`') AND x.failure IS NULL)`,
-		s.Generation.ID).Scan(&components, &spectra)
+	err := s.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM `+s.shown("component")+`),
+		(SELECT count(*) FROM `+s.shown("computed")+` k JOIN computation x ON x.id = k.computation_id WHERE k.role IN ('`+RoleH1+`', '`+RoleH2+`', '`+RoleV+`') AND x.failure IS NULL)`).Scan(&components, &spectra)
 	if err != nil || components == spectra {
 		return nil, err
 	}
-	return unsolved(ctx, s.tx, s.Generation.ID, "")
+	return unsolved(ctx, s.tx, s.shown, "")
 }
 
 // IsUnsolved reports whether the record still holds this very component, and lacks its
 // spectra.
 func (t *Tx) IsUnsolved(ctx context.Context, generationID int64, u Unsolved) (bool, error) {
-	found, err := unsolved(ctx, t.tx, generationID, "AND c.id = ?", u.ComponentID)
+	found, err := unsolved(ctx, t.tx, working(generationID), "AND c.id = ?", u.ComponentID)
 	return len(found) == 1 && found[0] == u, err
 }
 
 // unsolved looks for what is computed of each component, and whether its first spectrum is
 // there: what was lost is computed again.
-func unsolved(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Unsolved, error) {
-	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, coalesce(x.failure, '') FROM component c JOIN record r ON r.id = c.record_id
-		LEFT JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = ?
+func unsolved(ctx context.Context, q queryer, shown tables, condition string, args ...any) ([]Unsolved, error) {
+	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, coalesce(x.failure, '') FROM `+shown("component")+` c JOIN `+shown("record")+` r ON r.id = c.record_id
+		LEFT JOIN `+shown("computed")+` k ON k.record_id = c.record_id AND k.role = c.role
 		LEFT JOIN computation x ON x.id = k.computation_id
-		WHERE (x.id IS NULL OR x.failure IS NOT NULL OR NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.id = `+firstSpectrum+`)) `+condition+` ORDER BY c.id`, append([]any{generationID}, args...)...)
+		WHERE (x.id IS NULL OR x.failure IS NOT NULL OR NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.id = `+firstSpectrum+`)) `+condition+` ORDER BY c.id`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("find components without spectrum: %w", err)
 	}
@@ -59,7 +58,7 @@ func unsolved(ctx context.Context, q queryer, generationID int64, condition stri
 
 // ReadUnsolved reads what is stored of a component's samples.
 func (s *Store) ReadUnsolved(ctx context.Context, u Unsolved) (StoredMotion, error) {
-	m, err := readSeries(ctx, s.read, `c.id = ?`, u.ComponentID)
+	m, err := readSeries(ctx, s.read, working(0), `c.id = ?`, u.ComponentID)
 	if err != nil {
 		return m, fmt.Errorf("record %s: %w", u.Code, err)
 	}

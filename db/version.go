@@ -21,13 +21,16 @@ type Version struct {
 	MotionID             int64 // 0 where no other component holds the motion
 }
 
-// versionColumns are what is read of a version, from component c, record r, its
+// versionColumns is the query of versions up to its condition: component c, record r, its
 // event e and station s, source file f and series x.
-const versionColumns = `c.id, c.record_id, r.code, r.instrument, r.siting, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
+func versionColumns(shown tables) string {
+	return `SELECT c.id, c.record_id, r.code, r.instrument, r.siting, c.role, c.axis, c.label, c.azimuth_deg, c.channel,
 	coalesce(c.start_at, r.start_at, ''), c.step_s, c.samples, c.processing, c.low_cut_hz, c.high_cut_hz,
 	f.path, f.sha256, f.format, x.sha256, coalesce(c.motion_id, 0), coalesce(e.primary_id, e.id, 0), coalesce(upper(s.network), ''), coalesce(upper(s.code), '')
-	FROM component c JOIN record r ON r.id = c.record_id JOIN source_file f ON f.id = c.source_id JOIN series x ON x.id = c.series_id
-	LEFT JOIN event e ON e.id = r.event_id LEFT JOIN station s ON s.id = r.station_id`
+	FROM ` + shown("component") + ` c JOIN ` + shown("record") + ` r ON r.id = c.record_id JOIN ` + shown("source_file") + ` f ON f.id = c.source_id
+	JOIN series x ON x.id = c.series_id
+	LEFT JOIN ` + shown("event") + ` e ON e.id = r.event_id LEFT JOIN ` + shown("station") + ` s ON s.id = r.station_id`
+}
 
 // Related returns the records that may hold the same motions as this one, itself
 // included: records of one event at a station of the same code, in letters of either case, records with a
@@ -80,14 +83,14 @@ func (t *Tx) RelationsOf(ctx context.Context, recordID int64) ([]Relation, error
 
 // VersionsOf returns the components of a record.
 func (t *Tx) VersionsOf(ctx context.Context, recordID int64) ([]Version, error) {
-	return versions(ctx, t.tx, `SELECT `+versionColumns+` WHERE c.record_id = ? ORDER BY c.id`, recordID)
+	return versions(ctx, t.tx, versionColumns(working(0))+` WHERE c.record_id = ? ORDER BY c.id`, recordID)
 }
 
 // Versions returns the components of the records that hold a motion which another one
 // holds too; MotionID is 0 of those among them that do not.
 func (s *Snapshot) Versions(ctx context.Context) ([]Version, error) {
-	return versions(ctx, s.tx, `SELECT `+versionColumns+`
-		WHERE c.record_id IN (SELECT record_id FROM component WHERE motion_id IS NOT NULL) ORDER BY c.id`)
+	return versions(ctx, s.tx, versionColumns(s.shown)+`
+		WHERE c.record_id IN (SELECT record_id FROM `+s.shown("component")+` WHERE motion_id IS NOT NULL) ORDER BY c.id`)
 }
 
 func versions(ctx context.Context, q queryer, query string, args ...any) ([]Version, error) {
@@ -162,7 +165,7 @@ func (t *Tx) PutLikeness(ctx context.Context, l Likeness) error {
 
 // MotionOf returns a component's motion, as Snapshot.Motion does.
 func (t *Tx) MotionOf(ctx context.Context, v *Version) (Motion, error) {
-	m, err := readSeries(ctx, t.tx, `c.id = ?`, v.ComponentID)
+	m, err := readSeries(ctx, t.tx, working(0), `c.id = ?`, v.ComponentID)
 	if err != nil {
 		return Motion{}, err
 	}

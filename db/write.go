@@ -62,13 +62,16 @@ func (t *Tx) StartRun(ctx context.Context, kind, program string, at time.Time) (
 }
 
 // FinishRun notes how a run ended: outcome is "done", "interrupted" or
-// "failed", counts is kept as JSON.
+// "failed", counts is kept as JSON. The edition that it made is kept with it, or the
+// published one.
 func (t *Tx) FinishRun(ctx context.Context, id int64, outcome string, counts any, at time.Time) error {
 	text, err := json.Marshal(counts)
 	if err != nil {
 		return fmt.Errorf("finish run: %w", err)
 	}
-	err = t.exec(ctx, `UPDATE run SET outcome = ?, counts = ?, ended_at = ? WHERE id = ?`, outcome, string(text), timeText(at), id)
+	err = t.exec(ctx, `UPDATE run SET outcome = ?1, counts = ?2, ended_at = ?3, edition_id = coalesce(
+		(SELECT id FROM edition WHERE id = ?4), (SELECT id FROM edition WHERE state = '`+EditionPublished+`')) WHERE id = ?4`,
+		outcome, string(text), timeText(at), id)
 	if err != nil {
 		return fmt.Errorf("finish run: %w", err)
 	}
@@ -120,7 +123,7 @@ func (t *Tx) ForgetUnread(ctx context.Context, path, below string) error {
 // RejectionsOf returns what stands against content with this digest: channels
 // of a held file that found no place.
 func (t *Tx) RejectionsOf(ctx context.Context, path, sha256 string) ([]Rejection, error) {
-	return rejections(ctx, t.tx, `WHERE path = ? AND sha256 = ?`, path, sha256)
+	return rejections(ctx, t.tx, working(0), `WHERE path = ? AND sha256 = ?`, path, sha256)
 }
 
 // PutEvent returns the event of this code, which is stored as e where there is

@@ -181,7 +181,7 @@ func TestDocumentsInArchivesAreBounded(t *testing.T) {
 // faultIn is what stands against the only rejected file, whose path ends so.
 func faultIn(t *testing.T, store *db.Store, suffix string) string {
 	t.Helper()
-	all, err := store.Rejections(t.Context())
+	all, err := rejectionsOf(t, store)
 	if err != nil || len(all) != 1 || !strings.HasSuffix(filepath.ToSlash(all[0].Path), suffix) {
 		t.Fatalf("rejections %+v, %v", all, err)
 	}
@@ -244,7 +244,7 @@ func TestAMendedArchiveLosesItsRejections(t *testing.T) {
 	put(t, dir, "a.zip", zipOf(packed("i.tar", inner[:700]), packed("bad.txt", "no record")))
 	put(t, dir, "a.zip2.tar", inner[:700])
 	causes := func() (out []string) {
-		rejections, err := store.Rejections(t.Context())
+		rejections, err := rejectionsOf(t, store)
 		if err != nil {
 			t.Fatal(err)
 		}

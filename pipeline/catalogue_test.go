@@ -65,7 +65,7 @@ func magnitudesOf(t *testing.T, store *db.Store) string {
 	t.Helper()
 	e := componentsOf(t, store)[0].Record
 	var out []string
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		all, err := tx.Statements(t.Context(), db.Subject{Kind: db.SubjectEvent, ID: e.EventID})
 		for _, s := range all {
 			if s.Attribute != db.AttributeMagnitude {

@@ -15,7 +15,7 @@ import (
 // store that another version of the solver computed: its spectra would not be comparable
 // with new ones.
 func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid, recipe *condition.Recipe) (db.Generation, error) {
-	g, ok, err := tx.Published(ctx)
+	g, ok, err := tx.Current(ctx)
 	if err != nil {
 		return g, err
 	}

@@ -188,7 +188,7 @@ func TestEqualCodesOfTwoQuakes(t *testing.T) {
 		quakes[i].ID = "17"
 	}
 	for n, i := range []int{0, 1, 0, 1} {
-		err := store.Update(t.Context(), func(tx *db.Tx) error {
+		err := change(t.Context(), store, func(tx *db.Tx) error {
 			g, err := settleGeneration(t.Context(), tx, testGrid, nil)
 			s := newSettler(tx, map[db.Statement]string{}, nil)
 			c := ingest.Channel{Event: quakes[i].Event}
@@ -242,7 +242,7 @@ func TestEqualCodesOfQuakeMLAndOthers(t *testing.T) {
 			store := newStore(t)
 			at := 0
 			for part := range slices.Chunk(order, batch) {
-				err := store.Update(t.Context(), func(tx *db.Tx) error {
+				err := change(t.Context(), store, func(tx *db.Tx) error {
 					g, err := settleGeneration(t.Context(), tx, testGrid, nil)
 					s := newSettler(tx, map[db.Statement]string{}, nil)
 					for _, by := range part {
@@ -353,7 +353,7 @@ func TestVersionsOfOneQuakeML(t *testing.T) {
 // quakesOf are the QuakeML events that may be the event of this code.
 func quakesOf(t *testing.T, store *db.Store, code string) (quakes []db.Quake) {
 	t.Helper()
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		key, ok, err := tx.FindEvent(t.Context(), code)
 		if err != nil || !ok {
 			return errors.Join(err, fmt.Errorf("no event %s", code))

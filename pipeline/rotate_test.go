@@ -330,7 +330,7 @@ func TestAPairThatChangedMeanwhileIsNotStored(t *testing.T) {
 		if !strings.HasSuffix(p.Code, "01") {
 			return
 		}
-		err := store.Update(t.Context(), func(tx *db.Tx) error {
+		err := change(t.Context(), store, func(tx *db.Tx) error {
 			return tx.SetRoles(t.Context(), p.RecordID, map[string]string{db.RoleH1: db.RoleH2, db.RoleH2: db.RoleH1})
 		})
 		if err != nil {

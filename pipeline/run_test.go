@@ -148,7 +148,7 @@ func TestRunStoresAndHolds(t *testing.T) {
 	if after := dump(t, store); !reflect.DeepEqual(before, after) {
 		t.Error("the second run changed the store")
 	}
-	rejections, err := store.Rejections(t.Context())
+	rejections, err := rejectionsOf(t, store)
 	if err != nil || len(rejections) != 2 {
 		t.Fatalf("rejections = %v, %v", rejections, err)
 	}
@@ -167,7 +167,7 @@ func TestAMendedFileLosesItsRejection(t *testing.T) {
 	if got := run(t, store, options(dir)); got.Stored != 1 || got.Rejected != 1 {
 		t.Errorf("run = %+v", got)
 	}
-	if rejections, err := store.Rejections(t.Context()); err != nil || len(rejections) != 1 {
+	if rejections, err := rejectionsOf(t, store); err != nil || len(rejections) != 1 {
 		t.Errorf("rejections = %v, %v", rejections, err)
 	}
 }
@@ -236,8 +236,12 @@ func TestAStoppedRunIsFinishedByTheNext(t *testing.T) {
 	}
 }
 
+// componentsOf are all that is stored, published or not.
 func componentsOf(t *testing.T, store *db.Store) (out []db.HeldComponent) {
 	t.Helper()
+	if err := change(t.Context(), store, func(*db.Tx) error { return nil }); err != nil {
+		t.Fatal(err)
+	}
 	err := store.View(t.Context(), func(v *db.Snapshot) (err error) {
 		out, err = v.Components(t.Context(), db.AllDetails)
 		return err
@@ -408,4 +412,35 @@ func TestAFaultStopsNoBatch(t *testing.T) {
 	if w.summary.Rejected != 1 || !strings.Contains(cause, "a fault of swaybook") {
 		t.Errorf("%d files rejected for %s, want one for a fault of the program", w.summary.Rejected, cause)
 	}
+}
+
+func rejectionsOf(t *testing.T, store *db.Store) (found []db.Rejection, err error) {
+	t.Helper()
+	err = store.View(t.Context(), func(v *db.Snapshot) (err error) {
+		found, err = v.Rejections(t.Context())
+		return err
+	})
+	return found, err
+}
+
+// change changes the store and publishes it, as a run does.
+func change(ctx context.Context, store *db.Store, f func(*db.Tx) error) error {
+	return store.Update(ctx, func(tx *db.Tx) error {
+		if err := f(tx); err != nil {
+			return err
+		}
+		g, ok, err := tx.Current(ctx)
+		if err != nil || !ok {
+			return err
+		}
+		run, err := tx.StartRun(ctx, "ingest", "test", time.Date(2026, 1, 2, 3, 4, 5, 0, time.UTC))
+		if err != nil {
+			return err
+		}
+		isNew, err := tx.PutEdition(ctx, run, g.ID)
+		if err != nil || !isNew {
+			return err
+		}
+		return tx.Publish(ctx, run)
+	})
 }

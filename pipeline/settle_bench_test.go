@@ -64,7 +64,7 @@ func settleAll(b *testing.B, files []inventedAccount) (first, last float64) {
 			began = time.Now()
 		}
 		part := files[64*n : min(64*(n+1), len(files))]
-		err := store.Update(b.Context(), func(tx *db.Tx) error {
+		err := change(b.Context(), store, func(tx *db.Tx) error {
 			g, err := settleGeneration(b.Context(), tx, testGrid, nil)
 			if err != nil {
 				return err

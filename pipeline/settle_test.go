@@ -110,7 +110,7 @@ func settled(t *testing.T, accounts []inventedAccount, batch int) (*db.Store, []
 	store := newStore(t)
 	known := map[db.Statement]string{}
 	for part := range slices.Chunk(accounts, batch) {
-		err := store.Update(t.Context(), func(tx *db.Tx) error {
+		err := change(t.Context(), store, func(tx *db.Tx) error {
 			g, err := settleGeneration(t.Context(), tx, testGrid, nil)
 			s := newSettler(tx, known, nil)
 			for _, a := range part {
@@ -349,9 +349,9 @@ func TestEqualTimesAcrossBatches(t *testing.T) {
 func TestACatalogueMovesARecordWithItsHeader(t *testing.T) {
 	files := invented()[:1]
 	store, _ := settled(t, files, 1)
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	held := componentsOf(t, store)[0]
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		s := newSettler(tx, map[db.Statement]string{}, nil)
-		held := componentsOf(t, store)[0]
 		c := ingest.Channel{Event: ingest.Event{ID: "NEW"}}
 		key, err := tx.PutRecord(t.Context(), recordOf(c, "R1"), true)
 		return errors.Join(err, s.move(t.Context(), held.Record, key), s.state(t.Context(), key, nil), s.settle(t.Context()))

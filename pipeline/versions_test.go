@@ -129,7 +129,7 @@ func TestRelatedByWayOfOthers(t *testing.T) {
 		records = append(records, c.RecordID)
 		of[c.RecordID] = strings.TrimPrefix(filepath.ToSlash(c.SourcePath), filepath.ToSlash(dir)+"/")
 	}
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		for id := range of { // which would relate them, too
 			held, err := tx.VersionsOf(t.Context(), id)
 			if err != nil {
@@ -232,7 +232,7 @@ func motionsOf(t *testing.T, store *db.Store, all []*db.Version, likes []db.Like
 	t.Helper()
 	var motions []int64
 	back := errors.New("as it was")
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		for _, l := range likes {
 			if err := tx.PutLikeness(t.Context(), l); err != nil {
 				return err
@@ -397,7 +397,7 @@ func TestLagOfComponents(t *testing.T) {
 	store, opts := newStore(t), options(dir)
 	opts.Catalogue = catalogue(t, "file,event,station,component\na.csv,EV1,S1,000\nb.csv,EV2,S2,000\nc.csv,EV3,S3,000\n")
 	run(t, store, opts)
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		c := newComparison(tx, &likeness.Comparer{}, mostSamples)
 		var all []*db.Version
 		for id := range int64(3) {
@@ -434,7 +434,7 @@ func TestHeldMotions(t *testing.T) {
 	var want []db.Likeness
 	for _, test := range []struct{ most, held int }{{n * samples, n}, {4 * samples, 4}, {3*samples - 1, 2}, {0, 2}} {
 		back := errors.New("as it was")
-		err := store.Update(t.Context(), func(tx *db.Tx) error {
+		err := change(t.Context(), store, func(tx *db.Tx) error {
 			c := newComparison(tx, &likeness.Comparer{}, test.most)
 			var got []db.Likeness
 			var all []*db.Version

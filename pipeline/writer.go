@@ -251,14 +251,34 @@ func (w *writer) standing(ctx context.Context, tx *db.Tx) ([]Doubt, error) {
 	return out, nil
 }
 
-// publish makes the run's generation the one that is asked, unless its recipe could be
-// carried out on none of the components.
+// publish makes what is stored the edition that questions read: of the run's generation,
+// unless its recipe could be carried out on none of the components and there is another.
 func (w *writer) publish(ctx context.Context, tx *db.Tx) error {
-	barren, err := tx.IsBarren(ctx, w.run.generation.ID)
-	if err == nil && !barren {
-		err = tx.Publish(ctx, w.run.generation.ID)
+	generation := w.run.generation.ID
+	barren, err := tx.IsBarren(ctx, generation)
+	if err != nil {
+		return err
+	}
+	if published, ok, err := tx.PublishedEdition(ctx); err != nil {
+		return err
+	} else if ok && barren {
+		generation = published.GenerationID
+	}
+	isNew, err := tx.PutEdition(ctx, w.run.id, generation)
+	if err == nil && isNew {
+		err = tx.Publish(ctx, w.run.id)
 	}
 	return err
+}
+
+// publishPart publishes what a run that was stopped has stored, but not the beginning of
+// another generation than the one that questions read.
+func (w *writer) publishPart(ctx context.Context, tx *db.Tx) error {
+	current, ok, err := tx.PublishedEdition(ctx)
+	if err != nil || ok && current.GenerationID != w.run.generation.ID {
+		return err
+	}
+	return w.publish(ctx, tx)
 }
 
 // finish closes the run's entry. The summary counts what was committed.
@@ -274,6 +294,11 @@ func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 	ctx = context.WithoutCancel(ctx)
 	var standing []Doubt
 	errFinish := w.store.Update(ctx, func(tx *db.Tx) (err error) {
+		if outcome == "interrupted" {
+			if err := w.publishPart(ctx, tx); err != nil {
+				return err
+			}
+		}
 		if w.summary.EventsJoined, w.summary.Duplicates, err = tx.Relations(ctx); err != nil {
 			return err
 		}

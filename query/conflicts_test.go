@@ -45,7 +45,7 @@ func TestAgree(t *testing.T) {
 
 func TestConflicts(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		key, err := tx.PutRecord(t.Context(), db.Record{Code: "R1", Siting: "unknown"}, false)
 		if err != nil {
 			return err

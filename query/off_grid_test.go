@@ -147,12 +147,12 @@ func TestKeptOrdinatesComplete(t *testing.T) {
 
 func addRecord(t *testing.T, store *db.Store, r inventedRecord) {
 	t.Helper()
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		run, err := tx.StartRun(t.Context(), "ingest", "test", time.Date(2026, 1, 3, 3, 4, 5, 0, time.UTC))
 		if err != nil {
 			return err
 		}
-		g, _, err := tx.Published(t.Context())
+		g, _, err := tx.Current(t.Context())
 		if err != nil {
 			return err
 		}

@@ -20,8 +20,8 @@ func benchStore(b *testing.B, components, samples int) *db.Store {
 	rng := rand.New(rand.NewPCG(20260312, 1))
 	store := newStore(b, grid, nil)
 	ctx := context.Background()
-	err := store.Update(ctx, func(tx *db.Tx) error {
-		g, _, err := tx.Published(ctx)
+	err := change(ctx, store, func(tx *db.Tx) error {
+		g, _, err := tx.Current(ctx)
 		if err != nil {
 			return err
 		}

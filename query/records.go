@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"errors"
 	"math"
 	"slices"
 	"time"
@@ -260,8 +261,12 @@ type RejectionsAnswer struct {
 
 // Rejections lists what could not be stored. None is no error.
 func Rejections(ctx context.Context, store *db.Store) (*RejectionsAnswer, error) {
-	found, err := store.Rejections(ctx)
-	if err != nil {
+	var found []db.Rejection
+	err := store.View(ctx, func(snapshot *db.Snapshot) (err error) {
+		found, err = snapshot.Rejections(ctx)
+		return err
+	})
+	if err != nil && !errors.Is(err, db.ErrEmpty) {
 		return nil, err
 	}
 	answer := &RejectionsAnswer{Rows: make([]RejectionRow, len(found))}

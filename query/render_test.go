@@ -244,7 +244,7 @@ func TestRejections(t *testing.T) {
 	if err := none.Write(&b, FormatJSON); err != nil || b.String() != "[]\n" {
 		t.Errorf("JSON of none = %q, %v", b.String(), err)
 	}
-	err = store.Update(t.Context(), func(tx *db.Tx) error {
+	err = change(t.Context(), store, func(tx *db.Tx) error {
 		for _, r := range []db.Rejection{
 			{Path: "b/torn.at2", Line: 17, Cause: "announced 4000 values, found 3120", SHA256: "ab"},
 			{Path: "a/locked.txt", Cause: "permission denied\x1b[2J"},

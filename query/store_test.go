@@ -98,7 +98,7 @@ func newStore(t testing.TB, grid db.Grid, records []inventedRecord) *db.Store {
 			t.Error(err)
 		}
 	})
-	err = store.Update(ctx, func(tx *db.Tx) error {
+	err = change(ctx, store, func(tx *db.Tx) error {
 		run, err := tx.StartRun(ctx, "ingest", "test", time.Date(2026, 1, 2, 3, 4, 5, 0, time.UTC))
 		if err != nil {
 			return err
@@ -270,4 +270,26 @@ func golden(t *testing.T, name string, got []byte) {
 	if string(got) != string(want) {
 		t.Errorf("%s differs; got\n%s\nwant\n%s", name, got, want)
 	}
+}
+
+// change changes the store and publishes it, as a run does.
+func change(ctx context.Context, store *db.Store, f func(*db.Tx) error) error {
+	return store.Update(ctx, func(tx *db.Tx) error {
+		if err := f(tx); err != nil {
+			return err
+		}
+		g, ok, err := tx.Current(ctx)
+		if err != nil || !ok {
+			return err
+		}
+		run, err := tx.StartRun(ctx, "ingest", "test", time.Date(2026, 1, 2, 3, 4, 5, 0, time.UTC))
+		if err != nil {
+			return err
+		}
+		isNew, err := tx.PutEdition(ctx, run, g.ID)
+		if err != nil || !isNew {
+			return err
+		}
+		return tx.Publish(ctx, run)
+	})
 }

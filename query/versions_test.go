@@ -82,7 +82,7 @@ func TestVersionsInStatistics(t *testing.T) {
 		{code: "D", siting: "free-field", components: pair(4, 4)},
 	}
 	store := newStore(t, handGrid, records)
-	err := store.Update(t.Context(), func(tx *db.Tx) error {
+	err := change(t.Context(), store, func(tx *db.Tx) error {
 		var first []db.Version
 		for _, code := range []string{"A", "B", "C"} { // D is another motion
 			r, _, err := tx.FindRecord(t.Context(), code)

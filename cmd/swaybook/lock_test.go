@@ -22,7 +22,9 @@ func TestOneRunAtATime(t *testing.T) {
 	if err := os.Symlink(store, link); err != nil {
 		t.Fatal(err)
 	}
-	first := begin(t, ingest(store), func() bool { return componentsIn(t.Context(), store) > 0 })
+	stop(t, ingest(store), "after", os.Interrupt, func() bool { return componentsIn(t.Context(), store) > 0 }) // which leaves something to ask for
+	held := componentsIn(t.Context(), store)
+	first := begin(t, ingest(store), func() bool { return componentsIn(t.Context(), store) > held })
 	// Held still, so that it has the lock through all that follows; how it has it when it
 	// runs freely is no different.
 	if err := first.Process.Signal(syscall.SIGSTOP); err != nil {
