@@ -31,8 +31,8 @@ func held(ctx context.Context, q queryer, sha256 string) (string, bool, error) {
 }
 
 // AddComponent stores a component, its samples (from EncodeSamples) and what
-// was computed of them.
-func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data []byte, digest string, generation int64, computed Spectra) error {
+// was computed of them, nil where that is left to later.
+func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data []byte, digest string, generation int64, computed *Spectra) error {
 	warnings, err := json.Marshal(append([]string{}, c.Warnings...))
 	if err != nil {
 		return err
@@ -55,7 +55,10 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 			return fmt.Errorf("store finding: %w", err)
 		}
 	}
-	return t.addComputed(ctx, componentInputs, recordID, c.Role, generation, computed)
+	if computed == nil {
+		return nil
+	}
+	return t.addComputed(ctx, componentInputs, recordID, c.Role, generation, *computed)
 }
 
 // putSeries stores samples, which are held once.

@@ -66,7 +66,7 @@ const (
 // run; held, until it is published. It returns false where the newest edition is that
 // already.
 func (t *Tx) PutEdition(ctx context.Context, runID, generationID int64) (isNew bool, err error) {
-	newest, ok, err := editionBy(ctx, t.tx, `1 ORDER BY id DESC LIMIT 1`)
+	newest, ok, err := t.NewestEdition(ctx)
 	if err != nil {
 		return false, err
 	}
@@ -137,6 +137,12 @@ func (t *Tx) Publish(ctx context.Context, id int64) error {
 		return fmt.Errorf("publish edition: %w", err)
 	}
 	return nil
+}
+
+// NewestEdition returns the edition of the last run that made one; ok is false where there
+// is none.
+func (t *Tx) NewestEdition(ctx context.Context) (e Edition, ok bool, err error) {
+	return editionBy(ctx, t.tx, `1 ORDER BY id DESC LIMIT 1`)
 }
 
 // PublishedEdition returns the edition that questions read; ok is false where there is none.

@@ -98,7 +98,7 @@ func add(ctx context.Context, tx *Tx, g Generation, code, role string, base floa
 	c := Component{Role: role, Axis: "horizontal", Label: role, StepS: 0.01, Samples: len(samples), Unit: "m/s2", Processing: "corrected",
 		AzimuthDeg: number(30), Start: startsAt, SourceID: src, SourceLine: 5, Warnings: []string{"doubtful"}}
 	return tx.AddComponent(ctx, record.ID, c, data, digest, g.ID,
-		NewSpectra(computed, map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}, nil))
+		new(NewSpectra(computed, map[string]float64{MeasurePGA: base, MeasurePGV: 2 * base, MeasurePGD: 3 * base}, nil)))
 }
 
 func filledStore(t *testing.T) (*Store, Generation) {

@@ -12,7 +12,7 @@ ALTER TABLE run ADD COLUMN edition_id INTEGER REFERENCES edition (id);
 
 -- The rows that editions show, each in those from since on and before until, which is
 -- 9223372036854775807 as long as the newest edition has it. Ids are those of the tables
--- of the same names at that time.
+-- of the same names at that time, which run brought a file is left out.
 CREATE TABLE edition_event (
     until INTEGER NOT NULL, since INTEGER NOT NULL,
     id INTEGER NOT NULL, code TEXT NOT NULL, name TEXT, origin_time TEXT, latitude_deg REAL, longitude_deg REAL,
@@ -37,7 +37,7 @@ CREATE TABLE edition_record (
 CREATE TABLE edition_source_file (
     until INTEGER NOT NULL, since INTEGER NOT NULL,
     id INTEGER NOT NULL, sha256 TEXT NOT NULL, path TEXT NOT NULL, size_bytes INTEGER NOT NULL, modified_at TEXT,
-    format TEXT NOT NULL, run_id INTEGER NOT NULL,
+    format TEXT NOT NULL,
     PRIMARY KEY (until, id)
 ) STRICT, WITHOUT ROWID;
 
@@ -68,7 +68,7 @@ CREATE INDEX edition_computed_computation ON edition_computed (computation_id, u
 
 CREATE TABLE edition_rejection (
     until INTEGER NOT NULL, since INTEGER NOT NULL,
-    id INTEGER NOT NULL, path TEXT NOT NULL, line INTEGER NOT NULL, cause TEXT NOT NULL, sha256 TEXT, run_id INTEGER NOT NULL,
+    id INTEGER NOT NULL, path TEXT NOT NULL, line INTEGER NOT NULL, cause TEXT NOT NULL, sha256 TEXT,
     PRIMARY KEY (until, id)
 ) STRICT, WITHOUT ROWID;
 
@@ -100,11 +100,11 @@ UPDATE run SET edition_id = (SELECT id FROM edition) WHERE id = (SELECT max(id) 
 INSERT INTO edition_event SELECT 9223372036854775807, e.id, t.id, t.code, t.name, t.origin_time, t.latitude_deg, t.longitude_deg, t.depth_km, t.magnitude, t.magnitude_type, t.primary_id, t.own_origin FROM edition e, event t;
 INSERT INTO edition_station SELECT 9223372036854775807, e.id, t.id, t.network, t.code, t.name, t.latitude_deg, t.longitude_deg, t.elevation_m, t.vs30_m_s, t.site_class FROM edition e, station t;
 INSERT INTO edition_record SELECT 9223372036854775807, e.id, t.id, t.code, t.event_id, t.station_id, t.instrument, t.siting, t.start_at, t.distance_km, t.epicentral_km, t.hypocentral_km, t.rupture_km, t.jb_km FROM edition e, record t;
-INSERT INTO edition_source_file SELECT 9223372036854775807, e.id, t.id, t.sha256, t.path, t.size_bytes, t.modified_at, t.format, t.run_id FROM edition e, source_file t;
+INSERT INTO edition_source_file SELECT 9223372036854775807, e.id, t.id, t.sha256, t.path, t.size_bytes, t.modified_at, t.format FROM edition e, source_file t;
 INSERT INTO edition_component SELECT 9223372036854775807, e.id, t.id, t.record_id, t.role, t.axis, t.label, t.rank, t.azimuth_deg, t.channel, t.start_at, t.step_s, t.samples, t.unit, t.processing, t.low_cut_hz, t.high_cut_hz, t.header_peak_m_s2, t.warnings, t.source_id, t.source_line, t.motion_id, t.series_id FROM edition e, component t;
 INSERT INTO edition_finding SELECT 9223372036854775807, e.id, t.component_id, t.flag, t.value, t.bound, t.words FROM edition e, finding t;
 INSERT INTO edition_computed SELECT 9223372036854775807, e.id, t.record_id, t.role, t.computation_id FROM edition e, computed t WHERE t.generation_id = e.generation_id;
-INSERT INTO edition_rejection SELECT 9223372036854775807, e.id, t.id, t.path, t.line, t.cause, t.sha256, t.run_id FROM edition e, rejection t;
+INSERT INTO edition_rejection SELECT 9223372036854775807, e.id, t.id, t.path, t.line, t.cause, t.sha256 FROM edition e, rejection t;
 INSERT INTO edition_statement SELECT 9223372036854775807, e.id, t.subject, t.subject_id, t.attribute, t.stated_by, t.value, t.source FROM edition e, statement t;
 INSERT INTO edition_likeness SELECT 9223372036854775807, e.id, t.first_id, t.second_id, t.kind, t.scale, t.lag_s, t.correlation, t.band_correlation FROM edition e, likeness t;
 

@@ -161,7 +161,7 @@ func TestDocumentsInArchivesAreBounded(t *testing.T) {
 	put(t, dir, "a.zip", zipOf(packed("1.xml", "<?xml version=\"1.0\"?><a/>"), packed("2.xml", "<b/>"), packed("3.V2", "invented")))
 	file := ingest.Found{Path: filepath.Join(dir, "a.zip"), Rel: "a.zip"}
 	for left, want := range map[int]string{100: "", 26: "2.xml", 10: "1.xml 2.xml"} {
-		src := newSource([]ingest.Found{file}, nil)
+		src := newSource([]ingest.Found{file}, withDefaults(options()))
 		a := openArchive(file)
 		src.readMembers(t.Context(), a, &ingest.Metadata{}, &left)
 		a.Close()
@@ -298,7 +298,7 @@ func TestSourceOpensWhatItMay(t *testing.T) {
 	put(t, dir, "own.zip", untimed)
 	put(t, dir, "b.zip", untimed)
 	own, gone := filepath.Join(dir, "own.zip"), filepath.Join(dir, "gone.zip")
-	src := newSource([]ingest.Found{{Path: own, Rel: "own.zip"}, {Path: gone, Rel: "gone.zip"}, {Path: filepath.Join(dir, "b.zip"), Rel: "b.zip"}}, map[string]string{own: "own"})
+	src := newSource([]ingest.Found{{Path: own, Rel: "own.zip"}, {Path: gone, Rel: "gone.zip"}, {Path: filepath.Join(dir, "b.zip"), Rel: "b.zip"}}, withDefaults(Options{Own: map[string]string{own: "own"}}))
 	var got []string
 	for it := range src.items(t.Context()) {
 		got = append(got, fmt.Sprintf("%s %s %s %s %t", it.Rel, it.stem, it.skip, it.data, it.opened))

@@ -44,6 +44,27 @@ func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid, recipe *con
 	return tx.PutGeneration(ctx, storedRecipe(recipe), g.Grid, spectrum.Version)
 }
 
+// regenerate returns the generation of a study's run: of the recipe and grid asked for or,
+// where it asks for none, of the published one, by this program's solver.
+func regenerate(ctx context.Context, tx *db.Tx, asked db.Grid, recipe *condition.Recipe) (db.Generation, error) {
+	g, ok, err := tx.Current(ctx)
+	if err != nil {
+		return g, err
+	}
+	if !ok {
+		g.Grid, g.Recipe = defaultGrid(), storedRecipe(new(condition.Standard()))
+	}
+	grid := filled(asked, g.Grid)
+	if err := (spectrum.Grid{PeriodsS: grid.PeriodsS, Dampings: grid.Dampings}).Validate(); err != nil {
+		return g, err
+	}
+	stored := g.Recipe
+	if recipe != nil {
+		stored = storedRecipe(recipe)
+	}
+	return tx.PutGeneration(ctx, stored, grid, spectrum.Version)
+}
+
 func storedRecipe(r *condition.Recipe) db.Recipe {
 	return db.Recipe{Name: r.Name, Steps: r.Canonical()}
 }

@@ -213,14 +213,14 @@ func together(t *testing.T, files []delivery) string {
 	if err != nil {
 		t.Fatal(err)
 	}
-	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil))
+	w := newWriter(store, run, withDefaults(options()), newSource(nil, withDefaults(options())))
 	for _, f := range files {
 		res := result{source: db.Source{Path: f.path, SHA256: f.path, Format: "invented"}, rel: f.path, stem: stemOf(f.path), outcome: Stored}
 		for i, c := range f.channels {
 			c.DistanceKM = ingest.Known(float64(f.path[0]))
 			res.channels = append(res.channels, solved{channel: c, samples: 1, digest: fmt.Sprint(f.path, i), data: []byte{0},
 				accounts: []account{{by: db.ByHeader, source: f.path, channel: c}},
-				spectra:  db.NewSpectra(nil, map[string]float64{db.MeasurePGA: c.Orientation.AzimuthDeg.Value, db.MeasurePGV: float64(i), db.MeasurePGD: 1}, nil)})
+				spectra:  new(db.NewSpectra(nil, map[string]float64{db.MeasurePGA: c.Orientation.AzimuthDeg.Value, db.MeasurePGV: float64(i), db.MeasurePGD: 1}, nil))})
 		}
 		if err := w.storeBatch(t.Context(), []result{res}); err != nil {
 			t.Fatal(err)
@@ -257,14 +257,14 @@ func placeAll(t *testing.T, seats []seat) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	w := newWriter(store, run, withDefaults(options()), newSource(nil, nil))
+	w := newWriter(store, run, withDefaults(options()), newSource(nil, withDefaults(options())))
 	refused := map[string]string{}
 	for i, s := range seats {
 		parts := archive.Split(s.path)
 		res := result{
 			source: db.Source{Path: s.path, SHA256: fmt.Sprint(i), Format: "invented"}, rel: s.path, stem: stemOf(parts[len(parts)-1]), outcome: Stored,
 			channels: []solved{{channel: s.channel, samples: max(1, s.samples), digest: "-", data: []byte{0},
-				spectra: db.NewSpectra(nil, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1}, nil)}},
+				spectra: new(db.NewSpectra(nil, map[string]float64{db.MeasurePGA: 1, db.MeasurePGV: 1, db.MeasurePGD: 1}, nil))}},
 		}
 		w.opts.Progress = func(p Progress) {
 			for _, c := range p.File.Causes {

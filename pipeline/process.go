@@ -51,7 +51,7 @@ type solved struct {
 	samples  int
 	data     []byte // compressed samples
 	digest   string
-	spectra  db.Spectra
+	spectra  *db.Spectra // nil where they are left to a later stage, or cannot be had
 	findings []db.Finding
 }
 
@@ -61,6 +61,7 @@ type reader struct {
 	catalogue *ingest.Catalogue
 	hints     ingest.Hints
 	computer  computer
+	isLater   bool // spectra are left to a later stage
 }
 
 func newReader(store Store, opts Options, computer computer) *reader {
@@ -210,13 +211,19 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 // solve completes s by what is computed of the channel.
 func (r *reader) solve(s *solved, c ingest.Channel) error {
 	arrival := signal.Arrival(c.Acceleration, c.StepS)
-	spectra, err := r.computer.compute(condition.Component{
-		Acceleration: c.Acceleration, StepS: c.StepS, State: string(c.Processing), LowCutHz: numberOrNaN(c.LowCutHz), HighCutHz: numberOrNaN(c.HighCutHz),
-	}, arrival)
-	if _, cannot := errors.AsType[*condition.StepError](err); err != nil && !cannot {
-		return err // of a recipe that cannot be done the samples are kept
+	if !r.isLater {
+		spectra, err := r.computer.compute(condition.Component{
+			Acceleration: c.Acceleration, StepS: c.StepS, State: string(c.Processing), LowCutHz: numberOrNaN(c.LowCutHz), HighCutHz: numberOrNaN(c.HighCutHz),
+		}, arrival)
+		_, cannot := errors.AsType[*condition.StepError](err)
+		switch {
+		case err == nil:
+			s.spectra = &spectra
+		case !cannot:
+			return err // of a recipe that cannot be done the samples are kept
+		}
 	}
-	s.channel, s.samples, s.spectra, s.findings = withoutSamples(c), len(c.Acceleration), spectra, findingsOf(&c, arrival)
+	s.channel, s.samples, s.findings = withoutSamples(c), len(c.Acceleration), findingsOf(&c, arrival)
 	s.data, s.digest = db.EncodeSamples(c.Acceleration, c.UnitMPS2)
 	return nil
 }

@@ -40,7 +40,10 @@ type Options struct {
 	// Recipe conditions the components; nil asks for the store's own, or for
 	// condition.Standard in a new store. Another than the store's begins a generation of
 	// its own, which is published when it is complete.
-	Recipe  *condition.Recipe
+	Recipe *condition.Recipe
+	// Takes says of a file or member by its path below the path that was named, and of an
+	// archive, whether it is read; nil for all.
+	Takes   func(rel string, isArchive bool) bool
 	Workers int       // files in work at the same time; default GOMAXPROCS
 	Program string    // name and version, kept with the run
 	Started time.Time // when the run began
@@ -82,7 +85,7 @@ func Run(ctx context.Context, store Store, opts Options) (Summary, error) {
 	if err != nil {
 		return Summary{}, err
 	}
-	src := newSource(files, opts.Own)
+	src := newSource(files, opts)
 	src.readMetadata(ctx, opts.Hints.Metadata)
 	run, err := begin(ctx, store, opts)
 	if err != nil {
@@ -108,6 +111,9 @@ func withDefaults(opts Options) Options {
 	}
 	if opts.Hints.Metadata == nil {
 		opts.Hints.Metadata = &ingest.Metadata{}
+	}
+	if opts.Takes == nil {
+		opts.Takes = func(string, bool) bool { return true }
 	}
 	if opts.Progress == nil {
 		opts.Progress = func(Progress) {}
@@ -136,6 +142,9 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	var s state
 	err := store.Update(ctx, func(tx *db.Tx) error {
 		var err error
+		if err = refuseFollowed(ctx, tx); err != nil {
+			return err
+		}
 		if s.generation, err = settleGeneration(ctx, tx, opts.Grid, opts.Recipe); err != nil {
 			return err
 		}

@@ -98,6 +98,12 @@ func run(t *testing.T, store Store, opts Options) Summary {
 // ids, which nobody sees.
 func dump(t *testing.T, store *db.Store) []string {
 	t.Helper()
+	return append(shown(t, store), measures(t, store)...)
+}
+
+// shown is what questions see.
+func shown(t *testing.T, store *db.Store) []string {
+	t.Helper()
 	var out []string
 	err := store.View(t.Context(), func(v *db.Snapshot) error {
 		components, err := v.Components(t.Context(), db.AllDetails)
@@ -126,7 +132,7 @@ func dump(t *testing.T, store *db.Store) []string {
 	if err != nil {
 		t.Fatal(err)
 	}
-	return append(out, measures(t, store)...)
+	return out
 }
 
 // nameOf is the base name of a source, in an archive or not.
@@ -405,7 +411,7 @@ func TestAFaultStopsNoBatch(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	w := newWriter(store, run, opts, newSource(files, nil))
+	w := newWriter(store, run, opts, newSource(files, withDefaults(options())))
 	if err := w.files(t.Context()); err != nil {
 		t.Fatal(err)
 	}

@@ -156,7 +156,7 @@ func addComponent(ctx context.Context, tx *db.Tx, key db.RecordKey, path string,
 	data, digest := db.EncodeSamples([]float64{0, float64(sum.Sum32())}, 1) // no two alike
 	spectra := db.NewSpectra([][]float64{{1, 1, 1}, {1, 1, 1}}, nil, nil)
 	c := db.Component{Role: db.RoleH1, Axis: "horizontal", StepS: 0.01, Samples: 2, SourceID: source}
-	return tx.AddComponent(ctx, key.ID, c, data, digest, g.ID, spectra)
+	return tx.AddComponent(ctx, key.ID, c, data, digest, g.ID, &spectra)
 }
 
 func show(x *float64) string {

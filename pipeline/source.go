@@ -20,6 +20,7 @@ import (
 // archives what is in them.
 type source struct {
 	files   []ingest.Found
+	takes   func(rel string, isArchive bool) bool
 	decided map[string]decided // by absolute path, of files and members
 	total   atomic.Int64       // files and members found so far
 }
@@ -31,10 +32,10 @@ type decided struct {
 }
 
 // newSource returns the source of the files but for the run's own, of which the
-// reasons are given.
-func newSource(files []ingest.Found, own map[string]string) *source {
-	s := &source{files: files, decided: map[string]decided{}}
-	for name, reason := range own {
+// reasons are given, and for those that are not taken.
+func newSource(files []ingest.Found, opts Options) *source {
+	s := &source{files: files, takes: opts.Takes, decided: map[string]decided{}}
+	for name, reason := range opts.Own {
 		s.decided[absolute(name)] = decided{reason: reason}
 	}
 	s.total.Store(int64(len(files)))
@@ -78,10 +79,16 @@ func (s *source) file(ctx context.Context, f ingest.Found, yield func(item) bool
 		return yield(it)
 	}
 	opened := openArchive(f)
-	if opened == nil {
+	if opened != nil {
+		defer opened.Close()
+	}
+	switch {
+	case !s.takes(f.Rel, opened != nil):
+		s.total.Add(-1)
+		return true
+	case opened == nil:
 		return yield(it)
 	}
-	defer opened.Close()
 	return s.members(ctx, opened, yield)
 }
 
@@ -137,6 +144,9 @@ func (s *source) members(ctx context.Context, a *openedArchive, yield func(item)
 	for m, err := range a.members(ctx, ingest.SkipMember) {
 		if ctx.Err() != nil {
 			return false
+		}
+		if m.Name != "" && err == nil && !s.takes(archive.Join(a.found.Rel, m.Name), false) {
+			continue
 		}
 		s.total.Add(more)
 		more = 1

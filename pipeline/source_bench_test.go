@@ -33,7 +33,7 @@ func BenchmarkSource(b *testing.B) {
 			b.ReportAllocs()
 			bytes := 0
 			for b.Loop() {
-				for it := range newSource(found, nil).items(b.Context()) {
+				for it := range newSource(found, withDefaults(Options{})).items(b.Context()) {
 					bytes += len(it.data)
 				}
 			}
@@ -43,7 +43,7 @@ func BenchmarkSource(b *testing.B) {
 		b.Run(name+", documents", func(b *testing.B) {
 			b.ReportAllocs()
 			for b.Loop() {
-				newSource(found, nil).readMetadata(b.Context(), &ingest.Metadata{})
+				newSource(found, withDefaults(Options{})).readMetadata(b.Context(), &ingest.Metadata{})
 			}
 			b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N*n), "ns/file")
 		})

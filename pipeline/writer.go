@@ -21,6 +21,7 @@ type writer struct {
 	summary Summary
 	settler *settler                // of the batch in hand
 	known   map[db.Statement]string // what settlers know to be stated
+	isWhole bool                    // nothing is published of a run that does not come to its end
 	doubts  []recordDoubt           // kept to the end: another file may state what one does not
 }
 
@@ -294,7 +295,7 @@ func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 	ctx = context.WithoutCancel(ctx)
 	var standing []Doubt
 	errFinish := w.store.Update(ctx, func(tx *db.Tx) (err error) {
-		if outcome == "interrupted" {
+		if outcome == "interrupted" && !w.isWhole {
 			if err := w.publishPart(ctx, tx); err != nil {
 				return err
 			}

@@ -41,7 +41,7 @@ func BenchmarkWriter(b *testing.B) {
 			}
 			results = append(results, res)
 		}
-		w := newWriter(store, run, opts, newSource(nil, nil))
+		w := newWriter(store, run, opts, newSource(nil, withDefaults(options())))
 		b.StartTimer()
 		for at := 0; at < files; at += batchWeight {
 			if err := w.storeBatch(context.WithoutCancel(b.Context()), results[at:at+batchWeight]); err != nil {

@@ -60,7 +60,7 @@ func putRandom(ctx context.Context, tx *db.Tx, rng *rand.Rand, record int64, rol
 	}
 	data, digest := db.EncodeSamples(samples, 1)
 	c := db.Component{Role: role, Axis: "horizontal", StepS: 0.01, Samples: n, SourceID: src}
-	return tx.AddComponent(ctx, record, c, data, digest, g.ID, randomSpectra(rng, g.Grid))
+	return tx.AddComponent(ctx, record, c, data, digest, g.ID, new(randomSpectra(rng, g.Grid)))
 }
 
 func randomSpectra(rng *rand.Rand, grid db.Grid) db.Spectra {

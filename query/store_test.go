@@ -187,7 +187,7 @@ func (c inventedComponent) put(ctx context.Context, tx *db.Tx, run, record int64
 		component.Axis = c.axis
 	}
 	component.Findings = inventedFindings(c.found)
-	return tx.AddComponent(ctx, record, component, data, digest, g.ID, c.spectra(g.Grid))
+	return tx.AddComponent(ctx, record, component, data, digest, g.ID, new(c.spectra(g.Grid)))
 }
 
 func (c inventedComponent) step() float64 {

@@ -1,0 +1,200 @@
+package pipeline
+
+import (
+	"cmp"
+	"context"
+	"errors"
+	"fmt"
+	"os"
+	"slices"
+
+	"swaybook/db"
+	"swaybook/ingest"
+)
+
+// Study is what a run of a study needs beside the options.
+type Study struct {
+	Name, File string
+	// Decided is a digest of what decides, beside the files, how these are read: the
+	// catalogue, layouts, patterns and the like.
+	Decided string
+	// Rehash reads all files again, even if none looks changed.
+	Rehash bool
+	// Approve says whether what the run made may be published; it is asked where that is
+	// not what is published.
+	Approve func(ctx context.Context, run int64) (bool, error)
+}
+
+// Reprocessed is what became of a study.
+type Reprocessed struct {
+	Summary
+	Run       int64
+	IsRead    bool // files were read: something had changed
+	IsNew     bool // there is a new edition
+	Published bool // it, or what an earlier run held back, was published
+	Held      bool // it is held back
+}
+
+// Reprocess makes the store that of the study's files as they are now. Where a file is new,
+// changed, moved or gone, or what decides how they are read is another, all are read as
+// into a new store, so that it does not matter what runs there were before; nothing that
+// was computed of the same samples in the same way is computed again. The working state is
+// nobody's but the run's: questions see what was published, until the run publishes.
+// Errors and the end of the context are as for Run; a run that does not come to its end
+// publishes nothing, and the next one begins anew with what was computed.
+func Reprocess(ctx context.Context, store Store, opts Options, study Study) (Reprocessed, error) {
+	opts = withDefaults(opts)
+	files, err := ingest.Discover(opts.Paths)
+	if err != nil {
+		return Reprocessed{}, err
+	}
+	p := &reprocessing{study: study, seen: scan(files, opts)}
+	src := newSource(files, opts)
+	src.readMetadata(ctx, opts.Hints.Metadata)
+	run, err := p.begin(ctx, store, opts)
+	if err != nil {
+		return Reprocessed{}, err
+	}
+	run.reader.isLater = true
+	p.writer = newWriter(store, run, opts, src)
+	p.isWhole = true
+	if err = p.read(ctx); err == nil {
+		err = p.complete(ctx)
+	}
+	if err == nil {
+		err = p.rotate(ctx)
+	}
+	if err == nil {
+		err = p.show(ctx)
+	}
+	p.done.Run = run.id
+	p.done.Summary, err = p.finish(ctx, err)
+	return p.done, err
+}
+
+// reprocessing is a run of a study.
+type reprocessing struct {
+	*writer
+	study Study
+	seen  []db.Seen
+	done  Reprocessed
+}
+
+// racyNS is how shortly before a run a file may have changed that can change again without
+// a new time: two seconds, the coarsest clock of file systems.
+const racyNS = 2e9
+
+// scan looks at the files before any is read: what changes while it is read is seen as
+// changed by the next run.
+func scan(files []ingest.Found, opts Options) (out []db.Seen) {
+	for _, f := range files {
+		s := db.Seen{Path: f.Path, Size: -1, ModifiedNS: -1}
+		if info, err := os.Stat(f.Path); err == nil {
+			s.Size, s.ModifiedNS = info.Size(), info.ModTime().UnixNano()
+			if s.ModifiedNS > opts.Started.UnixNano()-racyNS {
+				s.ModifiedNS = -1
+			}
+		}
+		if opts.Takes(f.Rel, false) || opts.Takes(f.Rel, true) {
+			out = append(out, s)
+		}
+	}
+	slices.SortFunc(out, func(a, b db.Seen) int { return cmp.Compare(a.Path, b.Path) })
+	return out
+}
+
+// begin opens the run's entry, settles the generation, and turns the working state over
+// where the files have to be read.
+func (p *reprocessing) begin(ctx context.Context, store Store, opts Options) (s state, err error) {
+	err = store.Update(ctx, func(tx *db.Tx) (err error) {
+		if s.generation, err = regenerate(ctx, tx, opts.Grid, opts.Recipe); err != nil {
+			return err
+		}
+		if s.id, err = tx.StartRun(ctx, "reprocess", opts.Program, opts.Started); err != nil {
+			return err
+		}
+		unchanged, err := p.isUnchanged(ctx, tx)
+		if err != nil || unchanged {
+			return err
+		}
+		p.done.IsRead = true
+		return errors.Join(tx.ClearWorking(ctx), tx.Follow(ctx, p.followed(false)))
+	})
+	if err != nil {
+		return s, err
+	}
+	computer, err := newComputer(s.generation)
+	if err != nil {
+		return s, err
+	}
+	s.reader = newReader(store, opts, computer)
+	return s, nil
+}
+
+func (p *reprocessing) followed(whole bool) db.Followed {
+	return db.Followed{Name: p.study.Name, File: p.study.File, Decided: p.study.Decided, Whole: whole}
+}
+
+// isUnchanged reports whether the working state is that of the files as they are.
+func (p *reprocessing) isUnchanged(ctx context.Context, tx *db.Tx) (bool, error) {
+	f, ok, err := tx.Followed(ctx)
+	if err != nil || !ok || !f.Whole || f.Decided != p.study.Decided || p.study.Rehash {
+		return false, err
+	}
+	seen, err := tx.Seen(ctx)
+	if err != nil {
+		return false, err
+	}
+	sure := !slices.ContainsFunc(p.seen, func(s db.Seen) bool { return s.ModifiedNS < 0 })
+	return sure && slices.Equal(seen, p.seen), nil
+}
+
+// read brings the files to the store where they have to be.
+func (p *reprocessing) read(ctx context.Context) error {
+	if !p.done.IsRead {
+		return nil
+	}
+	return p.files(ctx)
+}
+
+// show makes the edition, and publishes what is not published where that is approved.
+func (p *reprocessing) show(ctx context.Context) error {
+	var newest, published db.Edition
+	err := p.store.Update(ctx, func(tx *db.Tx) (err error) {
+		if barren, err := tx.IsBarren(ctx, p.run.generation.ID); err != nil || barren {
+			return errors.Join(err, errBarren)
+		}
+		if p.done.IsNew, err = tx.PutEdition(ctx, p.run.id, p.run.generation.ID); err != nil {
+			return err
+		}
+		var errPublished error
+		newest, _, err = tx.NewestEdition(ctx)
+		published, _, errPublished = tx.PublishedEdition(ctx)
+		if p.done.IsRead {
+			err = errors.Join(err, tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
+		}
+		return errors.Join(err, errPublished)
+	})
+	if err != nil || newest.ID == published.ID {
+		return err
+	}
+	approved, err := p.study.Approve(ctx, newest.ID)
+	if err != nil || !approved {
+		p.done.Held = err == nil
+		return err
+	}
+	p.done.Published = true
+	return p.store.Update(ctx, func(tx *db.Tx) error { return tx.Publish(ctx, newest.ID) })
+}
+
+// errBarren says that nothing is left to publish.
+var errBarren = errors.New("the recipe can be carried out on none of the components: nothing is published")
+
+// refuseFollowed keeps other runs out of a store that a study keeps.
+func refuseFollowed(ctx context.Context, tx *db.Tx) error {
+	f, ok, err := tx.Followed(ctx)
+	if err != nil || !ok {
+		return err
+	}
+	return fmt.Errorf("the store is kept by the study %s (%s): add the files to its sources and reprocess it, or name another store with --store", f.Name, f.File)
+}
