@@ -66,16 +66,20 @@ var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 	study.Records:  newRecordsAsker,
 }
 
-func newSpectrumAsker(c *cli.Context) (asker, error) {
-	o, err := newSpectrumOptions(c)
-	ask := func(ctx context.Context, store *db.Store) (answer, error) {
-		a, err := o.question.Ask(ctx, store)
+// askIn asks for statistics in units.
+func askIn[A statistics](units query.Units, ask func(context.Context, *db.Store) (A, error)) asker {
+	return func(ctx context.Context, store *db.Store) (answer, error) {
+		a, err := ask(ctx, store)
 		if err != nil {
 			return nil, err
 		}
-		return inUnits{a, o.units}, nil
+		return inUnits{a, units}, nil
 	}
-	return ask, validated(err, o.question.Validate, o.question.Selection)
+}
+
+func newSpectrumAsker(c *cli.Context) (asker, error) {
+	o, err := newSpectrumOptions(c)
+	return askIn(o.units, o.question.Ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newDemandAsker(c *cli.Context) (asker, error) {
@@ -83,26 +87,12 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 		return newPortfolioAsker(c)
 	}
 	o, err := newDemandOptions(c)
-	ask := func(ctx context.Context, store *db.Store) (answer, error) {
-		a, err := o.question.Ask(ctx, store)
-		if err != nil {
-			return nil, err
-		}
-		return inUnits{a, o.units}, nil
-	}
-	return ask, validated(err, o.question.Validate, o.question.Selection)
+	return askIn(o.units, o.question.Ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newPortfolioAsker(c *cli.Context) (asker, error) {
 	o, err := newPortfolioOptions(c)
-	ask := func(ctx context.Context, store *db.Store) (answer, error) {
-		a, err := o.ask(ctx, store)
-		if err != nil {
-			return nil, err
-		}
-		return inUnits{a, o.units}, nil
-	}
-	return ask, validated(err, o.validate, o.question.Selection)
+	return askIn(o.units, o.ask), validated(err, o.validate, o.question.Selection)
 }
 
 func newRecordsAsker(c *cli.Context) (asker, error) {
