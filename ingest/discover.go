@@ -189,10 +189,5 @@ func IsArchive(file string) bool {
 		return false
 	}
 	defer f.Close()
-	head := make([]byte, archive.HeadSize)
-	n, err := io.ReadFull(f, head)
-	if err != nil && err != io.EOF && err != io.ErrUnexpectedEOF {
-		return false
-	}
-	return archive.Is(head[:n])
+	return archive.Begins(f)
 }

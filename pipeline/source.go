@@ -3,7 +3,6 @@ package pipeline
 import (
 	"cmp"
 	"context"
-	"io"
 	"io/fs"
 	"iter"
 	"os"
@@ -115,13 +114,8 @@ func openArchive(found ingest.Found) *openedArchive {
 	if err != nil {
 		return nil
 	}
-	head := make([]byte, archive.HeadSize)
-	n, err := io.ReadFull(f, head)
-	if err == io.EOF || err == io.ErrUnexpectedEOF {
-		err = nil
-	}
-	info, statErr := f.Stat()
-	if err != nil || statErr != nil || !archive.Is(head[:n]) {
+	info, err := f.Stat()
+	if err != nil || !archive.Begins(f) {
 		f.Close()
 		return nil
 	}

@@ -3,6 +3,7 @@ package archive
 import (
 	"bytes"
 	"encoding/binary"
+	"io"
 	"slices"
 	"strconv"
 	"strings"
@@ -46,6 +47,14 @@ var bzip2Block = []string{"\x31\x41\x59\x26\x53\x59", "\x17\x72\x45\x38\x50\x90"
 // Is reports whether a file that begins with head, up to HeadSize bytes, is one
 // that Members opens.
 func Is(head []byte) bool { return kindOf(head) != noArchive }
+
+// Begins reports whether what r reads begins as such a file does. It reads HeadSize bytes
+// at most; what cannot be read begins as none.
+func Begins(r io.Reader) bool {
+	head := make([]byte, HeadSize)
+	n, err := io.ReadFull(r, head)
+	return (err == nil || err == io.EOF || err == io.ErrUnexpectedEOF) && Is(head[:n])
+}
 
 func kindOf(head []byte) kind {
 	for _, m := range magics {
