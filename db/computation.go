@@ -131,19 +131,25 @@ func (t *Tx) addSpectra(ctx context.Context, computationID int64, computed Spect
 }
 
 // Adopt gives components and pairs of the generation that lack it what was computed of
-// equal inputs before.
-func (t *Tx) Adopt(ctx context.Context, generationID int64) error {
+// equal inputs before, and reports whether there was any.
+func (t *Tx) Adopt(ctx context.Context, generationID int64) (found bool, err error) {
 	for _, missing := range []string{
 		`SELECT i.record_id, i.role, x.generation_id, x.id FROM component_inputs i JOIN computation x ON x.generation_id = ?1 AND x.inputs = i.inputs
 			WHERE NOT EXISTS (SELECT 1 FROM computed k WHERE k.record_id = i.record_id AND k.role = i.role AND k.generation_id = ?1)`,
 		`SELECT i.record_id, i.role, x.generation_id, x.id FROM pair_inputs i JOIN computation x ON x.generation_id = i.generation_id AND x.inputs = i.inputs
 			WHERE i.generation_id = ?1 AND NOT EXISTS (SELECT 1 FROM computed k WHERE k.record_id = i.record_id AND k.role = i.role AND k.generation_id = ?1)`,
 	} {
-		if err := t.exec(ctx, `INSERT INTO computed (record_id, role, generation_id, computation_id) `+missing, generationID); err != nil {
-			return fmt.Errorf("find what was computed: %w", err)
+		r, err := t.tx.ExecContext(ctx, `INSERT INTO computed (record_id, role, generation_id, computation_id) `+missing, generationID)
+		if err != nil {
+			return false, fmt.Errorf("find what was computed: %w", err)
 		}
+		n, err := r.RowsAffected()
+		if err != nil {
+			return false, fmt.Errorf("find what was computed: %w", err)
+		}
+		found = found || n > 0
 	}
-	return nil
+	return found, nil
 }
 
 // forgetOutdated takes from a component, and from the pair that it belongs to, what was

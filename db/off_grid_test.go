@@ -118,7 +118,8 @@ func TestKeptOrdinatesFollowTheComponents(t *testing.T) {
 					return err
 				}
 			}
-			return tx.Adopt(ctx, 1)
+			_, err := tx.Adopt(ctx, 1)
+			return err
 		}, all},
 	} {
 		t.Run(name, func(t *testing.T) {

@@ -108,7 +108,7 @@ func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[in
 }
 
 func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s, coalesce(site_class, '') FROM `+s.shown("station")+``+where, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s, coalesce(site_class, '') FROM `+s.shown("station")+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read stations: %w", err)
 	}

@@ -41,8 +41,13 @@ func lackingOf[T any](ctx context.Context, w *writer, list func(context.Context,
 	if err != nil || len(lacking) == 0 {
 		return nil, err
 	}
-	if err := w.store.Update(ctx, func(tx *db.Tx) error { return tx.Adopt(ctx, w.run.generation.ID) }); err != nil {
-		return nil, err
+	found := false
+	err = w.store.Update(ctx, func(tx *db.Tx) (err error) {
+		found, err = tx.Adopt(ctx, w.run.generation.ID)
+		return err
+	})
+	if err != nil || !found {
+		return lacking, err
 	}
 	return list(ctx, w.run.generation.ID)
 }

@@ -49,14 +49,12 @@ func Reprocess(ctx context.Context, store Store, opts Options, study Study) (Rep
 		return Reprocessed{}, err
 	}
 	p := &reprocessing{study: study, seen: scan(files, opts)}
-	src := newSource(files, opts)
-	src.readMetadata(ctx, opts.Hints.Metadata)
 	run, err := p.begin(ctx, store, opts)
 	if err != nil {
 		return Reprocessed{}, err
 	}
 	run.reader.isLater = true
-	p.writer = newWriter(store, run, opts, src)
+	p.writer = newWriter(store, run, opts, newSource(files, opts))
 	p.isWhole = true
 	if err = p.read(ctx); err == nil {
 		err = p.complete(ctx)
@@ -154,6 +152,7 @@ func (p *reprocessing) read(ctx context.Context) error {
 	if !p.done.IsRead {
 		return nil
 	}
+	p.source.readMetadata(ctx, p.opts.Hints.Metadata)
 	return p.files(ctx)
 }
 
