@@ -103,7 +103,7 @@ func (t *Tx) setComputed(ctx context.Context, recordID int64, role string, gener
 
 func (t *Tx) addSpectra(ctx context.Context, computationID int64, computed Spectra) error {
 	for i, text := range computed.sd {
-		if err := t.exec(ctx, `INSERT INTO spectrum (id, sd_m) VALUES (?, ?)`, mostDampings*computationID+int64(i), text); err != nil {
+		if err := t.exec(ctx, `INSERT INTO spectrum (id, sd_m, crc32c) VALUES (?, ?, ?)`, mostDampings*computationID+int64(i), text, sealOf(text)); err != nil {
 			return fmt.Errorf("store spectrum: %w", err)
 		}
 	}

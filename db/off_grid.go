@@ -92,9 +92,6 @@ func (s *Snapshot) OffGrid(ctx context.Context, role string, records, blocks []i
 	return rows.Err()
 }
 
-// castagnoli is the polynomial of CRC-32C, for which processors have an instruction.
-var castagnoli = crc32.MakeTable(crc32.Castagnoli)
-
 var errSealed = errors.New("the values are not those that were stored")
 
 // sealDoubles appends values as little-endian doubles and their CRC-32C.

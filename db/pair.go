@@ -123,15 +123,24 @@ func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64
 		return m, err
 	}
 	m.periods, m.dampings = len(g.Grid.PeriodsS), len(g.Grid.Dampings)
-	rows, err := tx.QueryContext(ctx, `SELECT s.sd_m FROM component c
+	rows, err := tx.QueryContext(ctx, `SELECT s.crc32c, s.sd_m FROM component c
 		JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = ?
 		JOIN spectrum s ON s.id BETWEEN `+firstSpectrum+` AND `+lastSpectrum+`
 		WHERE c.id = ? ORDER BY s.id`, g.ID, componentID)
 	if err != nil {
 		return m, err
 	}
-	m.sd, err = collect(rows, func(sd *[]byte) []any { return []any{sd} })
+	m.sd, err = openTexts(rows)
 	return m, err
+}
+
+// openTexts reads spectra, nil for each that is not what was stored.
+func openTexts(rows *sql.Rows) (out [][]byte, err error) {
+	found, err := collect(rows, func(s *sealedText) []any { return []any{&s.seal, &s.text} })
+	for _, s := range found {
+		out = append(out, s.open())
+	}
+	return out, err
 }
 
 // DecodeMotion returns the motion as it was delivered, its samples checked against their
@@ -159,6 +168,9 @@ func (m StoredMotion) DecodeSD() ([]float64, error) {
 	}
 	sd := make([]float64, len(m.sd)*m.periods)
 	for i, text := range m.sd {
+		if text == nil {
+			return nil, m.damaged(fmt.Errorf("spectrum: %w", errSealed))
+		}
 		if err := Ordinates(text).Decode(sd[i*m.periods : (i+1)*m.periods]); err != nil {
 			return nil, m.damaged(err)
 		}

@@ -50,22 +50,30 @@ func (s *Store) view(ctx context.Context, condition string, args []any, f func(*
 		return fmt.Errorf("begin reading: %w", explain(err))
 	}
 	defer tx.Rollback()
-	e, ok, err := editionBy(ctx, tx, condition, args...)
+	v, err := snapshotOf(ctx, tx, condition, args...)
 	if err != nil {
 		return err
 	}
+	v.store = s
+	return f(v)
+}
+
+// snapshotOf is a snapshot, without its store, of the edition that meets the condition.
+func snapshotOf(ctx context.Context, tx *sql.Tx, condition string, args ...any) (*Snapshot, error) {
+	e, ok, err := editionBy(ctx, tx, condition, args...)
+	if err != nil {
+		return nil, err
+	}
 	if !ok {
-		return nothingShown(ctx, tx)
+		return nil, nothingShown(ctx, tx)
 	}
 	newest, err := idOf(ctx, tx, `SELECT max(id) FROM edition`)
 	if err != nil {
-		return fmt.Errorf("read edition: %w", err)
+		return nil, fmt.Errorf("read edition: %w", err)
 	}
-	v := &Snapshot{tx: tx, store: s, shown: ofEdition(e.ID, e.ID == newest), Edition: e}
-	if v.Generation, err = generation(ctx, tx, e.GenerationID); err != nil {
-		return err
-	}
-	return f(v)
+	v := &Snapshot{tx: tx, shown: ofEdition(e.ID, e.ID == newest), Edition: e}
+	v.Generation, err = generation(ctx, tx, e.GenerationID)
+	return v, err
 }
 
 // nothingShown says why there is nothing to see.
@@ -134,25 +142,24 @@ type Span struct{ From, To int }
 
 // Spectra reads the SD spectra of a role at the grid's damping of this position,
 // at the periods of the span only, and calls f with each in the order of the
-// record's id. Each text holds one value a period, unless it is damaged. f must
-// not keep it.
+// record's id. Each text holds one value a period, unless it is damaged: none where it is
+// not that of its checksum, which is of all periods. f must not keep it.
 func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
-	what, args := "s.sd_m", []any{dampingPosition, role}
-	if periods != (Span{0, len(s.Generation.Grid.PeriodsS)}) {
-		what = "substr(s.sd_m, ?3, ?4)"
-		args = append(args, periods.From*OrdinateWidth+1, (periods.To-periods.From)*OrdinateWidth)
-	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, `+what+` FROM `+s.shown("computed")+` k CROSS JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
-		WHERE k.role = ?2 ORDER BY k.record_id`, args...)
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, s.crc32c, s.sd_m FROM `+s.shown("computed")+` k CROSS JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
+		WHERE k.role = ?2 ORDER BY k.record_id`, dampingPosition, role)
 	if err != nil {
 		return fmt.Errorf("read spectra: %w", err)
 	}
 	defer rows.Close()
-	var id int64
-	var text sql.RawBytes
+	var id, seal int64
+	var raw sql.RawBytes
 	for rows.Next() {
-		if err := rows.Scan(&id, &text); err != nil {
+		if err := rows.Scan(&id, &seal, &raw); err != nil {
 			return fmt.Errorf("read spectra: %w", err)
+		}
+		text := sealedText{raw, seal}.open()
+		if len(text) >= periods.To*OrdinateWidth {
+			text = text[periods.From*OrdinateWidth : periods.To*OrdinateWidth]
 		}
 		if err := f(id, Ordinates(text)); err != nil {
 			return err
