@@ -90,7 +90,7 @@ func (t *Tx) PutEdition(ctx context.Context, runID, generationID int64) (isNew b
 // show ends the rows of the newest edition that are no longer those of the table, and
 // begins what is new, in an edition. It reports whether there was any.
 func (t *Tx) show(ctx context.Context, table shownTable, id int64, from string) (changed bool, err error) {
-	columns, err := t.columnsOf(ctx, "edition_"+table.name)
+	columns, err := columnsOf(ctx, t.tx, "edition_"+table.name)
 	if err != nil {
 		return false, err
 	}
@@ -119,8 +119,8 @@ func (t *Tx) show(ctx context.Context, table shownTable, id int64, from string) 
 }
 
 // columnsOf are the columns of an edition's table, but for its times.
-func (t *Tx) columnsOf(ctx context.Context, table string) ([]string, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT name FROM pragma_table_info(?) WHERE name NOT IN ('since', 'until')`, table)
+func columnsOf(ctx context.Context, q queryer, table string) ([]string, error) {
+	rows, err := q.QueryContext(ctx, `SELECT name FROM pragma_table_info(?) WHERE name NOT IN ('since', 'until')`, table)
 	if err != nil {
 		return nil, err
 	}

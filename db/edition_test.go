@@ -163,11 +163,11 @@ func TestEditionsHaveAllColumns(t *testing.T) {
 	s := newStore(t)
 	update(t, s, func(ctx context.Context, tx *Tx) error {
 		for _, table := range shownTables {
-			want, err := tx.columnsOf(ctx, table.name)
+			want, err := columnsOf(ctx, tx.tx, table.name)
 			if err != nil {
 				return err
 			}
-			got, err := tx.columnsOf(ctx, "edition_"+table.name)
+			got, err := columnsOf(ctx, tx.tx, "edition_"+table.name)
 			if err != nil {
 				return err
 			}

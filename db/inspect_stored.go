@@ -1,0 +1,197 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"fmt"
+	"math"
+	"slices"
+)
+
+// Stored values that are checked whole, whatever the sample.
+
+// Lengths checks that every computation that has not failed has all of its spectra, each
+// with a value for every period, and both of a pair.
+func (i *Inspection) Lengths(ctx context.Context) error {
+	return i.lookFor(ctx, "spectrum", `WITH has AS (
+			SELECT x.id, x.inputs, g.grid_id, count(s.id) AS n, max(s.id) - 256 * x.id + 1 AS upto, min(length(s.sd_m)) AS least, max(length(s.sd_m)) AS most
+			FROM computation x JOIN generation g ON g.id = x.generation_id LEFT JOIN spectrum s ON s.id BETWEEN 256 * x.id AND 256 * x.id + 255
+			WHERE x.failure IS NULL GROUP BY x.id
+		), size AS (SELECT g.id, (SELECT count(*) FROM grid_damping d WHERE d.grid_id = g.id) AS dampings, (SELECT count(*) FROM grid_period p WHERE p.grid_id = g.id) AS periods FROM grid g)
+		SELECT coalesce((SELECT r.code || ' ' || k.role || ': ' FROM computed k JOIN record r ON r.id = k.record_id WHERE k.computation_id = h.id), '') ||
+			'computation ' || h.id || ' has spectra of ' || h.n || ' dampings and of ' || coalesce(least, 0) || ' to ' || coalesce(most, 0) || ' bytes, want ' || z.dampings || ' of ' || 24 * z.periods
+		FROM has h JOIN size z ON z.id = h.grid_id WHERE h.n <> z.dampings OR h.upto <> h.n OR h.least <> 24 * z.periods OR h.most <> h.least`)
+}
+
+// OffGrid checks what is kept off the grid against its checksums, and returns how many rows
+// there are.
+func (i *Inspection) OffGrid(ctx context.Context) (rows int, err error) {
+	type block struct {
+		id   int64
+		data []byte
+	}
+	lengths := map[int64]int{}
+	err = look(ctx, i, "off_grid_block", `SELECT id, oscillators FROM off_grid_block`, nil, func(b *block) []any { return []any{&b.id, &b.data} }, func(b *block) {
+		lengths[b.id] = len(b.data) / 16
+		if openDoubles(make([]float64, len(b.data)/8), b.data) != nil {
+			i.found(Fault{Table: "off_grid_block", Text: fmt.Sprintf("block %d is not what was stored; questions do without it", b.id)})
+		}
+	})
+	if err != nil {
+		return 0, err
+	}
+	type row struct {
+		of, block int64
+		sd        sql.RawBytes
+	}
+	err = look(ctx, i, "off_grid", `SELECT computation_id, block_id, sd_m FROM off_grid`, nil, func(v *row) []any { return []any{&v.of, &v.block, &v.sd} }, func(v *row) {
+		rows++
+		if openDoubles(make([]float64, lengths[v.block]), v.sd) != nil {
+			i.found(Fault{Table: "off_grid", Text: fmt.Sprintf("computation %d, block %d: not what was stored; questions compute it again", v.of, v.block)})
+		}
+	})
+	return rows, err
+}
+
+// Seals compares all spectra with their checksums.
+func (i *Inspection) Seals(ctx context.Context) error {
+	type row struct {
+		id   int64
+		text sql.RawBytes
+		seal int64
+	}
+	var damaged []int64
+	err := look(ctx, i, "spectrum", `SELECT id, crc32c, sd_m FROM spectrum`, nil, func(v *row) []any { return []any{&v.id, &v.seal, &v.text} }, func(v *row) {
+		if (sealedText{v.text, v.seal}).open() == nil {
+			damaged = append(damaged, v.id)
+		}
+	})
+	for _, id := range damaged {
+		i.found(i.Of(ctx, InspectedComputation{ID: id / mostDampings}, "spectrum", fmt.Sprintf("damping %d: not what was stored; questions leave it out", id%mostDampings+1)))
+	}
+	return err
+}
+
+// KeptOffGrid is what is kept off the grid of one computation, or of both of a pair.
+type KeptOffGrid struct {
+	Oscillators []Oscillator
+	SD          []float64
+}
+
+// OffGridOf returns what is kept of a computation, of what is whole; of a pair that of its
+// maximum too.
+func (i *Inspection) OffGridOf(ctx context.Context, c InspectedComputation) (kept, maximum KeptOffGrid, err error) {
+	if kept, err = i.offGridOf(ctx, c.ID); err == nil && c.IsPair() {
+		maximum, err = i.offGridOf(ctx, c.maximumID)
+	}
+	return kept, maximum, err
+}
+
+func (i *Inspection) offGridOf(ctx context.Context, id int64) (kept KeptOffGrid, err error) {
+	rows, err := i.tx.QueryContext(ctx, `SELECT b.oscillators, o.sd_m FROM off_grid o JOIN off_grid_block b ON b.id = o.block_id WHERE o.computation_id = ? ORDER BY b.id`, id)
+	if err != nil {
+		return kept, err
+	}
+	type row struct{ oscillators, sd []byte }
+	found, err := collect(rows, func(v *row) []any { return []any{&v.oscillators, &v.sd} })
+	for _, v := range found {
+		values, sd := make([]float64, len(v.oscillators)/8), make([]float64, len(v.oscillators)/16)
+		if openDoubles(values, v.oscillators) != nil || openDoubles(sd, v.sd) != nil {
+			continue // reported as a whole
+		}
+		for pair := range slices.Chunk(values, 2) {
+			kept.Oscillators = append(kept.Oscillators, Oscillator{pair[0], pair[1]})
+		}
+		kept.SD = append(kept.SD, sd...)
+	}
+	return kept, err
+}
+
+// viewTolerance is what SQLite in pure Go may be off in reading decimals, where the
+// compiler fuses multiplications and additions.
+const viewTolerance = 4e-16
+
+// Ordinates compares the view ordinate with what questions read, of about so many records of
+// the published edition: to read ordinates one by one costs more than to solve for them, and
+// Structure compares what the view is. It returns the number of ordinates that it compared.
+func (i *Inspection) Ordinates(ctx context.Context, records int) (compared int, err error) {
+	if i.published.ID == 0 {
+		return 0, nil
+	}
+	v, err := snapshotOf(ctx, i.tx, `id = ?`, i.published.ID)
+	if err != nil {
+		return 0, ctx.Err() // reported with the generations
+	}
+	codes := map[int64]string{}
+	type record struct {
+		id   int64
+		code string
+	}
+	err = look(ctx, i, "edition_record", `SELECT id, code FROM `+v.shown("record"), nil, func(r *record) []any { return []any{&r.id, &r.code} }, func(r *record) { codes[r.id] = r.code })
+	if err != nil {
+		return 0, err
+	}
+	nth := max(1, int64(len(codes)/records))
+	for position, damping := range v.Generation.Grid.Dampings {
+		for _, role := range []string{RoleH1, RoleH2, RoleV, RoleRotD50, RoleRotD100} {
+			n, err := i.compareView(ctx, v, codes, role, position, damping, nth)
+			if err != nil {
+				return compared, err
+			}
+			compared += n
+		}
+	}
+	return compared, nil
+}
+
+func (i *Inspection) compareView(ctx context.Context, v *Snapshot, codes map[int64]string, role string, position int, damping float64, nth int64) (compared int, err error) {
+	periods := v.Generation.Grid.PeriodsS
+	want, expected := map[string][]float64{}, 0
+	err = v.Spectra(ctx, role, position, Span{0, len(periods)}, func(id int64, text Ordinates) error {
+		if id%nth != 0 {
+			return nil
+		}
+		sd := make([]float64, len(periods))
+		if text.Decode(sd) != nil {
+			i.found(Fault{Table: "spectrum", Record: codes[id], Role: role, Text: "not what was stored"})
+			return nil
+		}
+		want[codes[id]], expected = sd, expected+len(sd)
+		return nil
+	})
+	if ctx.Err() != nil {
+		return 0, ctx.Err()
+	}
+	if err != nil {
+		return 0, nil // cannot be read, which the checks of the file have told
+	}
+	type row struct {
+		code               string
+		period, sd, v, psa float64
+	}
+	at := map[float64]int{}
+	for k, t := range periods {
+		at[t] = k
+	}
+	err = look(ctx, i, "ordinate", `SELECT record, period_s, sd_m, psv_m_s, psa_g FROM ordinate WHERE component = ?1 AND damping = ?2
+		AND (?3 = 1 OR record IN (SELECT code FROM edition_record WHERE id % ?3 = 0))`, []any{role, damping, nth},
+		func(r *row) []any { return []any{&r.code, &r.period, &r.sd, &r.v, &r.psa} }, func(r *row) {
+			sd, known := want[r.code]
+			k, onGrid := at[r.period]
+			if !known || !onGrid {
+				return
+			}
+			compared++
+			omega := 2 * math.Pi / r.period
+			for _, pair := range [][2]float64{{r.sd, sd[k]}, {r.v, sd[k] * omega}, {r.psa, sd[k] * omega * omega / 9.80665}} {
+				if !(math.Abs(pair[0]-pair[1]) <= 4*viewTolerance*math.Abs(pair[1])) {
+					i.found(Fault{Table: "ordinate", Record: r.code, Role: role, Text: fmt.Sprintf("at %g s and damping %g the view has %.17g, questions %.17g", r.period, damping, pair[0], pair[1])})
+					return
+				}
+			}
+		})
+	if err == nil && compared != expected {
+		i.found(Fault{Table: "ordinate", Role: role, Text: fmt.Sprintf("at damping %g the view has %d ordinates, questions %d", damping, compared, expected)})
+	}
+	return compared, err
+}
