@@ -134,7 +134,7 @@ func (c *computer) rotate(relation spectrum.Relation, first, second db.StoredMot
 	if err != nil {
 		return median, maximum, fmt.Errorf("no solver for the time step: %w", err)
 	}
-	pair := spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b)+relation.Later(stepS), relation.Deg)
+	pair := pairOf(relation, a, b)
 	if pair.ChangedA {
 		sdA = solver.SD(nil, pair.A)
 	}
@@ -147,6 +147,29 @@ func (c *computer) rotate(relation spectrum.Relation, first, second db.StoredMot
 		return median, maximum, errors.New("the motion is beyond the range of numbers")
 	}
 	return c.solvers.spectra(sd50, peakMeasures(peaks50), nil), c.solvers.spectra(sd100, peakMeasures(peaks100), nil), nil
+}
+
+// pairOf makes two conditioned motions fit for rotation.
+func pairOf(relation spectrum.Relation, a, b condition.Conditioned) spectrum.Pair {
+	return spectrum.NewPair(a.Acceleration, b.Acceleration, a.SamplesBefore(b)+relation.Later(a.StepS), relation.Deg)
+}
+
+// rotateOffGrid computes the median and the maximum of a pair over all directions for
+// oscillators off the grid.
+func (c *computer) rotateOffGrid(relation spectrum.Relation, stored [2]db.StoredMotion, oscillators []db.Oscillator) (rotated [2][]float64, err error) {
+	var motions [2]condition.Conditioned
+	for k := range stored {
+		if motions[k], _, err = c.solved(stored[k]); err != nil {
+			return rotated, err
+		}
+	}
+	solver, err := solverOf(oscillators, motions[0].StepS)
+	if err != nil {
+		return rotated, err
+	}
+	p := pairOf(relation, motions[0], motions[1])
+	rotated[0], rotated[1] = solver.RotD(p.A, p.B, solver.SD(nil, p.A), solver.SD(nil, p.B))
+	return rotated, nil
 }
 
 // solved is a stored component, conditioned, with its stored SD.
