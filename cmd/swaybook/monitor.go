@@ -106,6 +106,12 @@ func (m *monitor) component(r pipeline.Recomputed) {
 	m.show("computing", "components", r.Done, r.Total)
 }
 
+// verified takes note of how far a verification is.
+func (m *monitor) verified(v pipeline.Verified) {
+	m.enter(v.Stage)
+	m.show(v.Stage, map[string]string{pipeline.VerifyReading: "series", pipeline.VerifyComputing: "results"}[v.Stage], v.Done, v.Total)
+}
+
 // enter begins another stage.
 func (m *monitor) enter(stage string) {
 	if m.stage != stage {
