@@ -16,6 +16,7 @@ import (
 	"testing"
 	"time"
 
+	"swaybook/db"
 	"swaybook/pipeline"
 	"swaybook/pipeline/demo"
 )
@@ -61,7 +62,7 @@ func TestAStoppedIngestIsFinishedByTheNext(t *testing.T) {
 	ingest, dir := slowIngest(t), t.TempDir()
 	undisturbed := filepath.Join(dir, "undisturbed.db")
 	mustRun(t, ingest(undisturbed))
-	want := exported(t, undisturbed)
+	want, digest := exported(t, undisturbed), wholeDigest(t, undisturbed)
 
 	for name, sig := range map[string]os.Signal{"kill": os.Kill, "interrupt": os.Interrupt, "terminate": syscall.SIGTERM} {
 		t.Run(name, func(t *testing.T) {
@@ -70,6 +71,9 @@ func TestAStoppedIngestIsFinishedByTheNext(t *testing.T) {
 			mustRun(t, ingest(store))
 			if got := exported(t, store); !bytes.Equal(got, want) {
 				t.Error("the ordinates differ from those of an undisturbed run")
+			}
+			if got := wholeDigest(t, store); got != digest {
+				t.Errorf("digest %s, of an undisturbed run %s", got, digest)
 			}
 		})
 	}
@@ -178,6 +182,20 @@ func counted(ctx context.Context, path, query string) (n int) {
 		return 0
 	}
 	return n
+}
+
+// wholeDigest is the digest of a store that has no fault.
+func wholeDigest(t *testing.T, store string) string {
+	t.Helper()
+	v, err := pipeline.Verify(t.Context(), store, pipeline.VerifyOptions{Sample: 100, Clock: time.Now})
+	if err != nil || len(v.Faults)+len(v.Remarks) > 0 {
+		t.Errorf("%s: %v, %v, %v", store, v.Faults, v.Remarks, err)
+	}
+	digest, err := db.Digest(t.Context(), store)
+	if err != nil {
+		t.Error(err)
+	}
+	return digest
 }
 
 func componentsIn(ctx context.Context, path string) int {
