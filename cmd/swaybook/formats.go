@@ -65,9 +65,15 @@ func listFormat(c *cli.Context) (form query.Format, err error) {
 
 // writeList writes the rows of a list as JSON under their name.
 func writeList[T any](w io.Writer, name string, rows []T) error {
+	return writeJSON(w, map[string]any{name: rows})
+}
+
+// writeJSON writes a value as JSON for people and programs.
+func writeJSON(w io.Writer, value any) error {
 	e := json.NewEncoder(w)
+	e.SetEscapeHTML(false)
 	e.SetIndent("", "  ")
-	return e.Encode(map[string]any{name: rows})
+	return e.Encode(value)
 }
 
 // formatRow is one format in JSON.

@@ -1,7 +1,6 @@
 package main
 
 import (
-	"encoding/json"
 	"fmt"
 	"io"
 	"maps"
@@ -111,10 +110,7 @@ func newIngestReport(o ingestOptions, summary pipeline.Summary, complete bool) i
 
 func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	if asJSON {
-		e := json.NewEncoder(w)
-		e.SetEscapeHTML(false)
-		e.SetIndent("", "  ")
-		return e.Encode(r)
+		return writeJSON(w, r)
 	}
 	p := &printer{w: w}
 	p.printf("%s, %.1f s\n", r.Store, r.Seconds)

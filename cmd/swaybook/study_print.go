@@ -1,7 +1,6 @@
 package main
 
 import (
-	"encoding/json"
 	"fmt"
 	"io"
 	"strconv"
@@ -136,10 +135,7 @@ func settingReports(settings []study.Setting) []settingReport {
 func (p *studyPlan) print(w io.Writer, asJSON bool) error {
 	r := p.report()
 	if asJSON {
-		e := json.NewEncoder(w)
-		e.SetIndent("", "  ")
-		e.SetEscapeHTML(false) // of comparisons
-		return e.Encode(r)
+		return writeJSON(w, r)
 	}
 	table := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	out := &printer{w: table}
