@@ -118,7 +118,7 @@ func (i *Inspection) Ordinates(ctx context.Context, records int) (compared int, 
 	if i.published.ID == 0 {
 		return 0, nil
 	}
-	v, err := snapshotOf(ctx, i.tx, `id = ?`, i.published.ID)
+	v, err := snapshotOf(ctx, i.tx, nothingShown, `id = ?`, i.published.ID)
 	if err != nil {
 		return 0, ctx.Err() // reported with the generations
 	}

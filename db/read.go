@@ -28,29 +28,21 @@ var ErrUnpublished = errors.New("nothing is published yet: the first run has not
 // View runs f on a snapshot of the published edition. The error is ErrEmpty or
 // ErrUnpublished where there is none.
 func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
-	return s.view(ctx, `state = '`+EditionPublished+`'`, nil, f)
+	return s.view(ctx, nothingShown, f, `state = '`+EditionPublished+`'`)
 }
 
-// ErrNoEdition says that no edition of a run is kept.
-var ErrNoEdition = errors.New("no such edition")
+// absent says why there is no edition such as was asked for.
+type absent func(context.Context, queryer) error
 
-// ViewAsOf runs f on a snapshot of what was published when a run had ended, or of what that
-// run held back. The error wraps ErrNoEdition where that is not there.
-func (s *Store) ViewAsOf(ctx context.Context, runID int64, f func(*Snapshot) error) error {
-	err := s.view(ctx, `id = (SELECT edition_id FROM run WHERE id = ?)`, []any{runID}, f)
-	if errors.Is(err, ErrEmpty) || errors.Is(err, ErrUnpublished) {
-		return fmt.Errorf("%w: run %d left none, or it is no longer kept", ErrNoEdition, runID)
-	}
-	return err
-}
-
-func (s *Store) view(ctx context.Context, condition string, args []any, f func(*Snapshot) error) error {
+// view runs f on a snapshot of the edition that meets the condition. Where there is none,
+// the error is that of missing.
+func (s *Store) view(ctx context.Context, missing absent, f func(*Snapshot) error, condition string, args ...any) error {
 	tx, err := s.read.BeginTx(ctx, nil)
 	if err != nil {
 		return fmt.Errorf("begin reading: %w", explain(err))
 	}
 	defer tx.Rollback()
-	v, err := snapshotOf(ctx, tx, condition, args...)
+	v, err := snapshotOf(ctx, tx, missing, condition, args...)
 	if err != nil {
 		return err
 	}
@@ -59,13 +51,13 @@ func (s *Store) view(ctx context.Context, condition string, args []any, f func(*
 }
 
 // snapshotOf is a snapshot, without its store, of the edition that meets the condition.
-func snapshotOf(ctx context.Context, tx *sql.Tx, condition string, args ...any) (*Snapshot, error) {
+func snapshotOf(ctx context.Context, tx *sql.Tx, missing absent, condition string, args ...any) (*Snapshot, error) {
 	e, ok, err := editionBy(ctx, tx, condition, args...)
 	if err != nil {
 		return nil, err
 	}
 	if !ok {
-		return nil, nothingShown(ctx, tx)
+		return nil, missing(ctx, tx)
 	}
 	newest, err := idOf(ctx, tx, `SELECT max(id) FROM edition`)
 	if err != nil {

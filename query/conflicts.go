@@ -33,10 +33,11 @@ type ConflictsAnswer struct {
 }
 
 // Conflicts lists what is stated of events, stations and records and differs from
-// what is taken by more than statements of one fact do. None is no error.
-func Conflicts(ctx context.Context, store *db.Store) (*ConflictsAnswer, error) {
+// what is taken by more than statements of one fact do, as of a run where one is given; see
+// Selection.AsOf. None is no error.
+func Conflicts(ctx context.Context, store *db.Store, asOf int64) (*ConflictsAnswer, error) {
 	answer := &ConflictsAnswer{}
-	err := view(ctx, store, func(snapshot *db.Snapshot) error {
+	err := view(ctx, store, asOf, func(snapshot *db.Snapshot) error {
 		disputed, err := snapshot.Disputed(ctx)
 		if err != nil {
 			return err

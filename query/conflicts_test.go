@@ -73,7 +73,7 @@ func TestConflicts(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	answer, err := Conflicts(t.Context(), store)
+	answer, err := Conflicts(t.Context(), store, 0)
 	if err != nil {
 		t.Fatal(err)
 	}

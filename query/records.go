@@ -104,7 +104,7 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 		return nil, err
 	}
 	answer := &RecordsAnswer{}
-	err = view(ctx, store, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error {
 		picked, err := pick(ctx, snapshot, q.Selection, db.AllDetails)
 		if picked == nil {
 			return err
@@ -259,10 +259,11 @@ type RejectionsAnswer struct {
 	Rows []RejectionRow
 }
 
-// Rejections lists what could not be stored. None is no error.
-func Rejections(ctx context.Context, store *db.Store) (*RejectionsAnswer, error) {
+// Rejections lists what could not be stored, as of a run where one is given; see
+// Selection.AsOf. None is no error.
+func Rejections(ctx context.Context, store *db.Store, asOf int64) (*RejectionsAnswer, error) {
 	var found []db.Rejection
-	err := store.View(ctx, func(snapshot *db.Snapshot) (err error) {
+	err := viewAny(ctx, store, asOf, func(snapshot *db.Snapshot) (err error) {
 		found, err = snapshot.Rejections(ctx)
 		return err
 	})

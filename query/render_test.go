@@ -236,7 +236,7 @@ func TestRecordsHeader(t *testing.T) {
 
 func TestRejections(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
-	none, err := Rejections(t.Context(), store)
+	none, err := Rejections(t.Context(), store, 0)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -258,7 +258,7 @@ func TestRejections(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	a, err := Rejections(t.Context(), store)
+	a, err := Rejections(t.Context(), store, 0)
 	if err != nil {
 		t.Fatal(err)
 	}

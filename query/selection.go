@@ -168,6 +168,9 @@ func joinWords[T ~string](words []T) string {
 // a pair over all directions are those of the motion itself, taken direction by
 // direction: stored, or computed from the samples where they are not.
 type Selection struct {
+	// AsOf is the number of a run: what was published when it had ended, or what it held
+	// back, is asked. 0 asks what is published.
+	AsOf      int64
 	Where     string // "" takes all
 	Scope     Scope
 	Component Component

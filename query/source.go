@@ -2,6 +2,7 @@ package query
 
 import (
 	"context"
+	"fmt"
 	"maps"
 	"runtime"
 	"slices"
@@ -13,14 +14,27 @@ import (
 	"swaybook/pipeline/spectrum"
 )
 
-// view runs f on a snapshot of a store that this program's solver computed.
-func view(ctx context.Context, store *db.Store, f func(*db.Snapshot) error) error {
-	return store.View(ctx, func(snapshot *db.Snapshot) error {
-		if err := snapshot.Generation.CheckSolver(spectrum.Version); err != nil {
+// view runs f on a snapshot that this program's solver computed: of the published edition,
+// or of that of a run where one is given.
+func view(ctx context.Context, store *db.Store, asOf int64, f func(*db.Snapshot) error) error {
+	return viewAny(ctx, store, asOf, func(snapshot *db.Snapshot) error {
+		err := snapshot.Generation.CheckSolver(spectrum.Version)
+		if err != nil && asOf != 0 { // there is nothing to be done about it
+			err = fmt.Errorf("%w: what run %d left comes from solver %q, this program has %q", db.ErrOtherGeneration, asOf, snapshot.Generation.Solver, spectrum.Version)
+		}
+		if err != nil {
 			return err
 		}
 		return f(snapshot)
 	})
+}
+
+// viewAny is view of what any solver computed.
+func viewAny(ctx context.Context, store *db.Store, asOf int64, f func(*db.Snapshot) error) error {
+	if asOf == 0 {
+		return store.View(ctx, f)
+	}
+	return store.ViewAsOf(ctx, asOf, f)
 }
 
 // source is where ordinates come from: one snapshot of a store.

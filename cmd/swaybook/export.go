@@ -29,6 +29,7 @@ func exportOrdinatesCommand() *cli.Command {
 		Flags: append(selectionFlags("all, recorded (without pairs over all directions), each, h1, h2, v, rotd50 or rotd100 (default: all)", "as for query spectrum (default: all)"),
 			&cli.StringFlag{Name: "damping", Usage: "damping ratios, a `LIST` such as 5% or 2%,0.05 (default: the grid's)"},
 			&cli.StringFlag{Name: "band", Usage: "periods of the grid to write, `FROM:TO` in s"},
+			asOfFlag(),
 		),
 		Action: func(c *cli.Context) error {
 			q, err := newExportQuestion(c)
@@ -48,7 +49,9 @@ func exportMeasuresCommand() *cli.Command {
 		Usage: "CSV of the scalar measures: peaks, Arias intensity, cumulative absolute velocity, durations and the like",
 		Description: "A row a component, of the motion as conditioned; everything held is written unless filtered. The names of the columns\n" +
 			"have the units; README.md has the definitions.",
-		Flags: selectionFlags("all, recorded (without pairs over all directions), each, h1, h2, v, rotd50 or rotd100 (default: all)", "as for query spectrum (default: all)"),
+		Flags: append(selectionFlags("all, recorded (without pairs over all directions), each, h1, h2, v, rotd50 or rotd100 (default: all)", "as for query spectrum (default: all)"),
+			asOfFlag(),
+		),
 		Action: func(c *cli.Context) error {
 			selection, err := newSelection(c, query.ParseStoredComponent, query.ParseStoredSiting)
 			if err := errors.Join(err, noArguments(c)); err != nil {

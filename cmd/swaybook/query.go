@@ -56,6 +56,14 @@ func statisticsFlags() []cli.Flag {
 	)
 }
 
+// asOfFlag says which edition a question reads. It is no flag of a selection, since the
+// answers of a study are of the run that gives them.
+func asOfFlag() cli.Flag {
+	return &cli.Int64Flag{Name: asOf, DefaultText: "what is published", Usage: "answer as when `RUN` had ended, a number of swaybook runs"}
+}
+
+const asOf = "as-of"
+
 func formatFlag(choices string) cli.Flag {
 	return &cli.StringFlag{Name: "format", Value: "table", Usage: choices}
 }
@@ -63,6 +71,7 @@ func formatFlag(choices string) cli.Flag {
 // newSelection reads the selection flags.
 func newSelection(c *cli.Context, component func(string) (query.Component, error), siting func(string) (query.Siting, error)) (s query.Selection, err error) {
 	s.Where, s.Scope.Event = c.String("where"), c.String("event")
+	s.AsOf = c.Int64(asOf)
 	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
 	s.IgnoreUsableBand = c.Bool("ignore-usable-band")
 	err = errors.Join(
@@ -77,6 +86,9 @@ func newSelection(c *cli.Context, component func(string) (query.Component, error
 	if c.IsSet("screen") {
 		err = errors.Join(err, parseInto(&s.Screen, c, "screen", query.ParseScreen))
 	}
+	if c.IsSet(asOf) && s.AsOf < 1 {
+		err = errors.Join(err, ofFlag(asOf, usagef("--as-of %d: want the number of a run", s.AsOf)))
+	}
 	return s, err
 }
 
@@ -88,6 +100,7 @@ func querySpectrumCommand() *cli.Command {
 			&cli.StringFlag{Name: "measure", Usage: "sd, psv, psa, vh (the vertical spectrum over the horizontal one) or eta (the spectrum over that of 5% damping) (default: psa)"},
 			&cli.StringFlag{Name: "band", Usage: "periods of the grid to show, `FROM:TO` in s"},
 			&cli.StringFlag{Name: "periods", Usage: "periods to show instead of the grid's, a `LIST` in s; computed from the samples where off the grid"},
+			asOfFlag(),
 			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
@@ -195,6 +208,7 @@ func queryDemandCommand() *cli.Command {
 			&cli.StringFlag{Name: "structures", Usage: "instead of one structure those of a CSV or TOML `FILE`, a row each"},
 			&cli.IntFlag{Name: "nearest", DefaultText: "none", Usage: "with --structures and --event: estimates from the `N` nearest stations, the worst structure first"},
 			&cli.StringFlag{Name: "ordinates", Value: "exact", Usage: "with --structures: exact, or grid, interpolated between stored ones"},
+			asOfFlag(),
 			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
@@ -254,6 +268,7 @@ func queryRecordsCommand() *cli.Command {
 		Flags: append(selectionFlags("recorded, all (pairs stored over all directions too), each, h1, h2, v, rotd50 or rotd100 (default: recorded)", "as for query spectrum (default: all)"),
 			&cli.BoolFlag{Name: "rejected", DisableDefaultText: true, Usage: "list what could not be stored or conditioned, and why"},
 			&cli.BoolFlag{Name: "conflicts", DisableDefaultText: true, Usage: "list what catalogue, metadata and headers state otherwise than what is taken"},
+			asOfFlag(),
 			formatFlag("table, csv or json"),
 		),
 		Action: func(c *cli.Context) error {
@@ -270,7 +285,7 @@ func queryRecordsCommand() *cli.Command {
 
 type recordsOptions struct {
 	question query.RecordsQuestion
-	list     func(context.Context, *db.Store) (writer, error) // instead of the records
+	list     func(context.Context, *db.Store, int64) (writer, error) // instead of the records, as of a run
 	format   query.Format
 }
 
@@ -297,14 +312,18 @@ type writer interface {
 }
 
 // otherLists are what query records lists instead of records, by flag.
-var otherLists = map[string]func(context.Context, *db.Store) (writer, error){
-	"rejected":  func(ctx context.Context, s *db.Store) (writer, error) { return query.Rejections(ctx, s) },
-	"conflicts": func(ctx context.Context, s *db.Store) (writer, error) { return query.Conflicts(ctx, s) },
+var otherLists = map[string]func(ctx context.Context, store *db.Store, asOf int64) (writer, error){
+	"rejected": func(ctx context.Context, s *db.Store, asOf int64) (writer, error) {
+		return query.Rejections(ctx, s, asOf)
+	},
+	"conflicts": func(ctx context.Context, s *db.Store, asOf int64) (writer, error) {
+		return query.Conflicts(ctx, s, asOf)
+	},
 }
 
 func runRecords(ctx context.Context, store *db.Store, o recordsOptions, w, stderr io.Writer) error {
 	if o.list != nil {
-		answer, err := o.list(ctx, store)
+		answer, err := o.list(ctx, store, o.question.AsOf)
 		if err != nil {
 			return err
 		}

@@ -49,7 +49,7 @@ func studyVocabulary() study.Vocabulary {
 	}
 	for kind, command := range productCommands {
 		for _, f := range command().Flags {
-			if f.Names()[0] != "format" {
+			if name := f.Names()[0]; name != "format" && name != asOf {
 				v.Products[kind] = append(v.Products[kind], studyFlag(f))
 			}
 		}

@@ -99,7 +99,7 @@ func newRecordsAsker(c *cli.Context) (asker, error) {
 	o, err := newRecordsOptions(c)
 	ask := func(ctx context.Context, store *db.Store) (answer, error) {
 		if o.list != nil {
-			a, err := o.list(ctx, store)
+			a, err := o.list(ctx, store, o.question.AsOf)
 			return list{a, ""}, err
 		}
 		a, err := o.question.Ask(ctx, store)
