@@ -27,6 +27,23 @@ func editionOf(t *testing.T, s *Store, publish bool) (run int64, isNew bool) {
 	return run, isNew
 }
 
+// changed changes the working state, and publishes nothing.
+func changed(t *testing.T, s *Store, f func(ctx context.Context, tx *Tx) error) {
+	t.Helper()
+	if err := s.Update(t.Context(), func(tx *Tx) error { return f(t.Context(), tx) }); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// count is what a query counts.
+func count(t *testing.T, s *Store, query string) (n int) {
+	t.Helper()
+	if err := s.read.QueryRowContext(t.Context(), query).Scan(&n); err != nil {
+		t.Fatal(err)
+	}
+	return n
+}
+
 // all is everything that a snapshot shows.
 func all(t *testing.T, v *Snapshot) string {
 	t.Helper()

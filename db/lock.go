@@ -228,6 +228,34 @@ func (l *Lock) Release() error {
 	return l.lock.Unlock()
 }
 
+// heldLock is what could be seen of a store's lock.
+type heldLock struct {
+	isHeld bool
+	holder *Holder // nil where the lock does not say
+}
+
+// lookAtLock looks whether a run holds the store. It has the lock for a moment, together
+// with all who look, which a run that wants it sits out: it asks again.
+func lookAtLock(store string) (*heldLock, error) {
+	h := &heldLock{}
+	real, err := resolve(store)
+	if err == nil {
+		l := flock.New(real+lockSuffix, flock.SetFlag(os.O_RDONLY))
+		var free bool
+		if free, err = l.TryRLock(); err == nil && !free {
+			h.isHeld, h.holder = true, parseHolder(readLock(l.Path()))
+		}
+		err = errors.Join(err, l.Close())
+	}
+	if errors.Is(err, fs.ErrNotExist) {
+		return h, nil
+	}
+	if err != nil {
+		return nil, fmt.Errorf("look at the lock of store %s: %w", store, explainLock(err))
+	}
+	return h, nil
+}
+
 // explainLock turns the system's words for what people meet into ours.
 func explainLock(err error) error {
 	switch {

@@ -113,6 +113,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			queryCommand(),
 			exportCommand(),
 			reprocessCommand(),
+			runsCommand(),
 			backupCommand(),
 			verifyCommand(),
 			formatsCommand(),
@@ -138,10 +139,10 @@ const caution = query.Caution
 // ending the process on a mistake.
 func setUsageHandling(c *cli.Command) {
 	c.OnUsageError = onUsageError
-	if len(c.Subcommands) > 0 {
-		c.Action = missingCommand
-	} else {
+	if len(c.Subcommands) == 0 {
 		c.HideHelpCommand = true // its arguments may be named "help" and "h"
+	} else if c.Action == nil {
+		c.Action = missingCommand
 	}
 	for _, sub := range c.Subcommands {
 		setUsageHandling(sub)
