@@ -145,6 +145,30 @@ func (t *Tx) NewestEdition(ctx context.Context) (e Edition, ok bool, err error) 
 	return editionBy(ctx, t.tx, `1 ORDER BY id DESC LIMIT 1`)
 }
 
+// PublishRun publishes the edition that a run left, which must be of this solver, and returns
+// it and what was published before; ok is false where nothing was. The error is a
+// *NoEditionError where that edition is not kept.
+func (t *Tx) PublishRun(ctx context.Context, runID int64, solver string) (e, before Edition, ok bool, err error) {
+	e, found, err := editionBy(ctx, t.tx, `id = (SELECT `+editionOfRun+` FROM run WHERE id = ?)`, runID)
+	if err == nil && !found {
+		err = noEdition(ctx, t.tx, runID)
+	}
+	if err != nil {
+		return e, before, false, err
+	}
+	g, err := generation(ctx, t.tx, e.GenerationID)
+	if err == nil {
+		err = g.CheckSolver(solver) // else nobody could read it
+	}
+	if err == nil {
+		before, ok, err = t.PublishedEdition(ctx)
+	}
+	if err == nil {
+		err = t.Publish(ctx, e.ID)
+	}
+	return e, before, ok, err
+}
+
 // PublishedEdition returns the edition that questions read; ok is false where there is none.
 func (t *Tx) PublishedEdition(ctx context.Context) (e Edition, ok bool, err error) {
 	return editionBy(ctx, t.tx, `state = '`+EditionPublished+`'`)

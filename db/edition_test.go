@@ -198,3 +198,16 @@ func TestEditionsHaveAllColumns(t *testing.T) {
 		return nil
 	})
 }
+
+// An edition of another solver could be read by nobody, and is not published.
+func TestOtherSolversAreNotPublished(t *testing.T) {
+	s, _ := pairStore(t)
+	run, _ := editionOf(t, s, false)
+	err := s.Update(t.Context(), func(tx *Tx) error {
+		_, _, _, err := tx.PublishRun(t.Context(), run, "another")
+		return err
+	})
+	if !errors.Is(err, ErrOtherGeneration) {
+		t.Errorf("publish an edition of another solver: %v", err)
+	}
+}

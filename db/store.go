@@ -49,6 +49,20 @@ func Create(ctx context.Context, path, solver string) (*Store, error) {
 	return s, nil
 }
 
+// MustExist returns an error that wraps ErrNoStore where there is no store at the path.
+func MustExist(path string) error {
+	if isAbsent(path) {
+		return fmt.Errorf("open store %s: %w", path, ErrNoStore)
+	}
+	return nil
+}
+
+// isAbsent reports whether nothing is at the path, or nothing in the file.
+func isAbsent(path string) bool {
+	info, err := os.Stat(path)
+	return errors.Is(err, fs.ErrNotExist) || err == nil && info.Size() == 0
+}
+
 // Open opens the store at path for reading. A store that lacks migrations is
 // brought up to date first, as Create does. The error is ErrNoStore where there is
 // no file and ErrNewer where a newer program wrote it.
@@ -165,7 +179,7 @@ func codeOf(err error) int {
 }
 
 func openReader(ctx context.Context, path, solver string) (*Store, error) {
-	if info, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) || err == nil && info.Size() == 0 {
+	if isAbsent(path) {
 		return nil, ErrNoStore
 	}
 	s, err := openPool(path)

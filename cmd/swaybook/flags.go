@@ -97,7 +97,7 @@ func noArguments(c *cli.Context) error {
 func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
 	store, err := db.Open(c.Context, storePath(c), pipeline.SolverVersion)
 	if errors.Is(err, db.ErrNoStore) {
-		return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH", err, storePath(c))
+		return explainNoStore(err, storePath(c))
 	}
 	if err != nil {
 		return err
@@ -108,6 +108,30 @@ func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) erro
 		fmt.Fprintf(c.App.ErrWriter, "note: ordinates computed off the grid are not kept for later questions: %v\n", why)
 	}
 	return err
+}
+
+// withLockedStore opens a store that is there for writing around f, as the only run on it.
+func withLockedStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) (err error) {
+	path := storePath(c)
+	if err := db.MustExist(path); err != nil { // before it has a lock
+		return explainNoStore(err, path)
+	}
+	lock, err := db.TakeLock(c.Context, path, holder(time.Now()))
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, lock.Release()) }()
+	store, err := db.Create(c.Context, path, pipeline.SolverVersion)
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, store.Close()) }()
+	return f(c.Context, store)
+}
+
+// explainNoStore says how to make a store.
+func explainNoStore(err error, path string) error {
+	return fmt.Errorf("%w; make one with: swaybook --store %s ingest PATH", err, path)
 }
 
 // The periods that a grid may have, in s: beyond them lie mistakes in the unit.

@@ -30,7 +30,7 @@ func runsCommand() *cli.Command {
 				return listRuns(ctx, store, c.Bool("json"), c.App.Writer)
 			})
 		},
-		Subcommands: []*cli.Command{runsShowCommand()},
+		Subcommands: []*cli.Command{runsShowCommand(), runsPublishCommand()},
 	}
 }
 
@@ -126,4 +126,43 @@ func runNumber(c *cli.Context) (int64, error) {
 		return 0, usagef("%s: %q is no number of a run", c.Command.FullName(), c.Args().First())
 	}
 	return n, nil
+}
+
+func runsPublishCommand() *cli.Command {
+	return &cli.Command{
+		Name:      "publish",
+		Usage:     "have questions read what a run left",
+		ArgsUsage: "RUN",
+		Description: "Makes the edition that the run left, held back or superseded, the published one. Nothing is lost: the other one can\n" +
+			"be published again. The next run goes on with the recipe of what is published.",
+		Action: func(c *cli.Context) error {
+			run, err := runNumber(c)
+			if err != nil {
+				return err
+			}
+			return withLockedStore(c, func(ctx context.Context, store *db.Store) error {
+				return publishRun(ctx, store, run, c.App.Writer)
+			})
+		},
+	}
+}
+
+func publishRun(ctx context.Context, store *db.Store, run int64, w io.Writer) error {
+	var e, before db.Edition
+	var was bool
+	err := store.Update(ctx, func(tx *db.Tx) (err error) {
+		e, before, was, err = tx.PublishRun(ctx, run, pipeline.SolverVersion)
+		return err
+	})
+	switch {
+	case err != nil:
+		return err
+	case was && before.ID == e.ID:
+		_, err = fmt.Fprintf(w, "edition %d is published already\n", e.ID)
+	case was:
+		_, err = fmt.Fprintf(w, "edition %d is published, before it was %d\n", e.ID, before.ID)
+	default:
+		_, err = fmt.Fprintf(w, "edition %d is published, before it was none\n", e.ID)
+	}
+	return err
 }
