@@ -14,11 +14,13 @@ type Tx struct {
 	tx session
 }
 
+var errReading = errors.New("store is open for reading only")
+
 // Update runs f in one transaction, which is committed if f returns nil and
 // rolled back whole otherwise.
 func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 	if s.write == nil {
-		return errors.New("store is open for reading only")
+		return errReading
 	}
 	return transact(ctx, s.write, f)
 }

@@ -114,6 +114,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			exportCommand(),
 			reprocessCommand(),
 			runsCommand(),
+			pruneCommand(),
 			backupCommand(),
 			verifyCommand(),
 			formatsCommand(),
