@@ -37,6 +37,7 @@ func (p *picked) leaveOut(reasons map[int]string) error {
 // none.
 func (p *picked) finish() error {
 	r := p.report
+	r.motions = p.motions
 	r.Spectra, r.Records, r.LeftOut, r.Notes = len(p.motions), 0, nil, nil
 	for _, reason := range slices.Sorted(maps.Keys(p.leftOut)) {
 		r.LeftOut = append(r.LeftOut, LeftOut{Reason: reason, Records: p.leftOut[reason]})

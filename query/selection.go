@@ -238,4 +238,6 @@ type SelectionReport struct {
 	Events    int // known events that contribute
 	LeftOut   []LeftOut
 	Notes     []string
+
+	motions []motion // that contribute
 }
