@@ -20,19 +20,20 @@ type Study struct {
 	Decided string
 	// Rehash reads all files again, even if none looks changed.
 	Rehash bool
-	// Approve says whether what the run made may be published; it is asked where that is
-	// not what is published.
-	Approve func(ctx context.Context, run int64) (bool, error)
+	// Approve says whether an edition may be published in place of another, 0 for none.
+	Approve func(ctx context.Context, edition, published int64) (bool, error)
 }
 
 // Reprocessed is what became of a study.
 type Reprocessed struct {
 	Summary
-	Run       int64
-	IsRead    bool // files were read: something had changed
-	IsNew     bool // there is a new edition
-	Published bool // it, or what an earlier run held back, was published
-	Held      bool // it is held back
+	Run    int64
+	IsRead bool // files were read: something had changed
+	IsNew  bool // the run made an edition
+	// Edition is the newest one, Before what was published when the run began, and
+	// Published what is since; 0 where there is none.
+	Edition, Before, Published int64
+	IsHeld                     bool // the newest edition was not approved
 }
 
 // Reprocess makes the store that of the study's files as they are now. Where a file is new,
@@ -156,34 +157,47 @@ func (p *reprocessing) read(ctx context.Context) error {
 	return p.files(ctx)
 }
 
-// show makes the edition, and publishes what is not published where that is approved.
+// show makes the edition, and publishes it where that is approved; also one that an earlier
+// run held back. One in whose place somebody has published an earlier one stays where it is.
 func (p *reprocessing) show(ctx context.Context) error {
-	var newest, published db.Edition
-	err := p.store.Update(ctx, func(tx *db.Tx) (err error) {
-		if barren, err := tx.IsBarren(ctx, p.run.generation.ID); err != nil || barren {
-			return errors.Join(err, errBarren)
+	newest, err := p.put(ctx)
+	if err != nil || newest.State != db.EditionHeld {
+		return err
+	}
+	approved, err := p.study.Approve(ctx, newest.ID, p.done.Before)
+	if err != nil || !approved {
+		p.done.IsHeld = err == nil
+		return err
+	}
+	err = p.store.Update(ctx, func(tx *db.Tx) error { return tx.Publish(ctx, newest.ID) })
+	if err == nil {
+		p.done.Published = newest.ID
+	}
+	return err
+}
+
+// put makes the edition where anything has changed, and returns the newest.
+func (p *reprocessing) put(ctx context.Context) (newest db.Edition, err error) {
+	err = p.store.Update(ctx, func(tx *db.Tx) (err error) {
+		if barren, err := tx.IsBarren(ctx, p.run.generation.ID); err != nil {
+			return err
+		} else if barren {
+			return errBarren
 		}
 		if p.done.IsNew, err = tx.PutEdition(ctx, p.run.id, p.run.generation.ID); err != nil {
 			return err
 		}
-		var errPublished error
-		newest, _, err = tx.NewestEdition(ctx)
-		published, _, errPublished = tx.PublishedEdition(ctx)
 		if p.done.IsRead {
-			err = errors.Join(err, tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
+			err = errors.Join(tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
 		}
-		return errors.Join(err, errPublished)
+		var errNewest, errPublished error
+		var published db.Edition
+		newest, _, errNewest = tx.NewestEdition(ctx)
+		published, _, errPublished = tx.PublishedEdition(ctx)
+		p.done.Edition, p.done.Before, p.done.Published = newest.ID, published.ID, published.ID
+		return errors.Join(err, errNewest, errPublished)
 	})
-	if err != nil || newest.ID == published.ID {
-		return err
-	}
-	approved, err := p.study.Approve(ctx, newest.ID)
-	if err != nil || !approved {
-		p.done.Held = err == nil
-		return err
-	}
-	p.done.Published = true
-	return p.store.Update(ctx, func(tx *db.Tx) error { return tx.Publish(ctx, newest.ID) })
+	return newest, err
 }
 
 // errBarren says that nothing is left to publish.

@@ -13,7 +13,7 @@ import (
 	"swaybook/pipeline/condition"
 )
 
-func approve(context.Context, int64) (bool, error) { return true, nil }
+func approve(context.Context, int64, int64) (bool, error) { return true, nil }
 
 var inventedStudy = Study{Name: "Quays of Ardmoor", File: "quays.toml", Decided: "1", Approve: approve}
 
@@ -69,7 +69,7 @@ func TestReprocessedStoresAreAsNew(t *testing.T) {
 		if opts.Recipe == nil && (got.Recomputed != c.computed || got.Rotated != c.pair) {
 			t.Errorf("change %d: %d components and %d pairs computed, want %d and %d", i, got.Recomputed, got.Rotated, c.computed, c.pair)
 		}
-		if !got.IsRead || !got.IsNew || !got.Published || got.Held {
+		if !got.IsRead || !got.IsNew || got.Published != got.Run || got.IsHeld {
 			t.Errorf("change %d: %+v", i, got)
 		}
 	}
@@ -91,7 +91,7 @@ func TestReprocessLeavesTheUnchanged(t *testing.T) {
 		"back":      {inventedStudy, true},
 	} {
 		r := reprocess(t, store, options(dir), c.study)
-		if name != "back" && r.IsRead != c.reads || r.IsNew || r.Published || r.Recomputed+r.Rotated != 0 || r.Run == first.Run {
+		if name != "back" && r.IsRead != c.reads || r.IsNew || r.Published != first.Run || r.Recomputed+r.Rotated != 0 || r.Run == first.Run {
 			t.Errorf("%s: %+v", name, r)
 		}
 		if got := dump(t, store); !reflect.DeepEqual(got, want) {
@@ -107,18 +107,21 @@ func TestReprocessLeavesTheUnchanged(t *testing.T) {
 // published, and the next finishes.
 func TestReprocessHoldsBackAndGoesOn(t *testing.T) {
 	dir, store := recordFiles(t, 3), newStore(t)
-	reprocess(t, store, options(dir), inventedStudy)
+	first := reprocess(t, store, options(dir), inventedStudy)
 	before := shown(t, store)
 	put(t, dir, "EV1_ST00000.AT2", at2("Invented", "Site 00", "000", 88))
 	age(t, dir)
 	refuse := inventedStudy
-	asked := int64(0)
-	refuse.Approve = func(_ context.Context, run int64) (bool, error) { asked = run; return false, nil }
+	asked, instead := int64(0), int64(0)
+	refuse.Approve = func(_ context.Context, edition, published int64) (bool, error) {
+		asked, instead = edition, published
+		return false, nil
+	}
 	r := reprocess(t, store, options(dir), refuse)
-	if !r.Held || r.Published || asked != r.Run || !reflect.DeepEqual(shown(t, store), before) {
+	if !r.IsHeld || r.Published != first.Run || asked != r.Run || instead != first.Run || !reflect.DeepEqual(shown(t, store), before) {
 		t.Errorf("held back: %+v, asked of run %d", r, asked)
 	}
-	if again := reprocess(t, store, options(dir), refuse); !again.Held || again.IsRead || asked != r.Run {
+	if again := reprocess(t, store, options(dir), refuse); !again.IsHeld || again.IsRead || asked != r.Run {
 		t.Errorf("held back again: %+v, asked of run %d", again, asked)
 	}
 	put(t, dir, "EV1_ST01000.AT2", at2("Invented", "Site 01", "000", 89))
@@ -136,5 +139,32 @@ func TestReprocessHoldsBackAndGoesOn(t *testing.T) {
 	}
 	if err := store.View(t.Context(), func(v *db.Snapshot) error { return nil }); err != nil {
 		t.Error(err)
+	}
+}
+
+// Where somebody has published an earlier edition, that stays until files change.
+func TestReprocessLeavesWhatSomebodyPublished(t *testing.T) {
+	dir, store := recordFiles(t, 2), newStore(t)
+	first := reprocess(t, store, options(dir), inventedStudy)
+	put(t, dir, "EV1_ST00000.AT2", at2("Invented", "Site 00", "000", 88))
+	age(t, dir)
+	second := reprocess(t, store, options(dir), inventedStudy)
+	if second.Published != second.Run || second.Before != first.Run {
+		t.Fatalf("the second run: %+v", second)
+	}
+	if err := store.Update(t.Context(), func(tx *db.Tx) error { return tx.Publish(t.Context(), first.Run) }); err != nil {
+		t.Fatal(err)
+	}
+	refuse := inventedStudy
+	refuse.Approve = func(context.Context, int64, int64) (bool, error) {
+		t.Error("it was asked whether what somebody took back may be published")
+		return true, nil
+	}
+	if r := reprocess(t, store, options(dir), refuse); r.Published != first.Run || r.Edition != second.Run || r.IsHeld {
+		t.Errorf("after publishing an earlier edition: %+v", r)
+	}
+	put(t, dir, "EV1_ST00000.AT2", at2("Invented", "Site 00", "000", 89))
+	if r := reprocess(t, store, options(dir), inventedStudy); r.Published != r.Run || r.Before != first.Run {
+		t.Errorf("after a change: %+v", r)
 	}
 }
