@@ -70,6 +70,16 @@ func (s *Store) RunDetails(ctx context.Context, id int64) (*RunDetails, error) {
 	return d, err
 }
 
+// ChangesSince returns how what a run left differs from an earlier edition. The error is a
+// *NoEditionError where the run's is not kept.
+func (s *Store) ChangesSince(ctx context.Context, before, run int64) (c *Changes, err error) {
+	err = s.ViewAsOf(ctx, run, func(v *Snapshot) error {
+		c, err = v.changesSince(ctx, before)
+		return err
+	})
+	return c, err
+}
+
 // changesSince compares the snapshot's edition with an earlier one, 0 for an empty one.
 func (s *Snapshot) changesSince(ctx context.Context, before int64) (*Changes, error) {
 	c := &Changes{}
