@@ -37,7 +37,7 @@ type ConflictsAnswer struct {
 // Selection.AsOf. None is no error.
 func Conflicts(ctx context.Context, store *db.Store, asOf int64) (*ConflictsAnswer, error) {
 	answer := &ConflictsAnswer{}
-	err := view(ctx, store, asOf, func(snapshot *db.Snapshot) error {
+	err := view(ctx, store, &Selection{AsOf: asOf}, func(snapshot *db.Snapshot) error {
 		disputed, err := snapshot.Disputed(ctx)
 		if err != nil {
 			return err

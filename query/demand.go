@@ -96,7 +96,7 @@ func (q DemandQuestion) Ask(ctx context.Context, store *db.Store) (*DemandAnswer
 		return nil, err
 	}
 	var answer *DemandAnswer
-	err = view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, &q.Selection, func(snapshot *db.Snapshot) error {
 		answer, err = q.answer(ctx, snapshot)
 		return err
 	})

@@ -28,7 +28,7 @@ func (d Drift) Ratio() float64 {
 // number of motions where there are fewer.
 func (d Drift) Loss() float64 {
 	r := d.Ratio()
-	if d.Name == figureCount {
+	if d.Name == figureCount && !math.IsNaN(d.After) {
 		return max(0, -r)
 	}
 	return math.Abs(r)

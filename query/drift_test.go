@@ -26,7 +26,7 @@ func TestDrifts(t *testing.T) {
 			t.Errorf("%d: %+v changes by %v, loss %v, want %+v", i, d, d.Ratio(), d.Loss(), w)
 		}
 	}
-	if gone := Drifts(before[:1], nil); len(gone) != 1 || !math.IsInf(gone[0].Loss(), 1) {
+	if gone := Drifts(before[:2], nil); len(gone) != 2 || !math.IsInf(gone[0].Loss(), 1) || !math.IsInf(gone[1].Loss(), 1) {
 		t.Errorf("a figure that is gone: %+v", gone)
 	}
 }

@@ -55,7 +55,7 @@ func (q ExportQuestion) Write(ctx context.Context, store *db.Store, w io.Writer)
 		return nil, err
 	}
 	var summary *ExportSummary
-	err = view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, &q.Selection, func(snapshot *db.Snapshot) error {
 		summary, err = q.write(ctx, snapshot, w)
 		return err
 	})

@@ -93,6 +93,7 @@ type Compared interface {
 type Motion struct {
 	Record, Role string
 	Members      []string // roles of the components that it is made of
+	Event        string   // code, "" for none
 }
 
 // Motions are those that contribute, in the order of record code and role.
@@ -103,6 +104,9 @@ func (r *SelectionReport) Motions() []Motion {
 		out[i] = Motion{Record: m.record(), Role: m.role}
 		for _, component := range m.members {
 			out[i].Members = append(out[i].Members, component.Role)
+		}
+		if event := m.members[0].Record.Event; event != nil {
+			out[i].Event = event.Code
 		}
 	}
 	return out

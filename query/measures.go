@@ -29,7 +29,7 @@ func (q MeasuresQuestion) Write(ctx context.Context, store *db.Store, w io.Write
 		return nil, err
 	}
 	summary := &ExportSummary{}
-	err = view(ctx, store, selection.AsOf, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, &selection, func(snapshot *db.Snapshot) error {
 		picked, err := pick(ctx, snapshot, selection, db.DetailPeaks|db.DetailMeasures|db.DetailMotion)
 		if err != nil {
 			return err

@@ -74,7 +74,7 @@ func (q NearestQuestion) Ask(ctx context.Context, store *db.Store) (*NearestAnsw
 		return nil, err
 	}
 	answer := &NearestAnswer{Ordinates: q.Ordinates}
-	if err := view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error { return q.answer(ctx, snapshot, answer) }); err != nil {
+	if err := view(ctx, store, &q.Selection, func(snapshot *db.Snapshot) error { return q.answer(ctx, snapshot, answer) }); err != nil {
 		return nil, err
 	}
 	return answer, nil

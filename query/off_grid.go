@@ -57,9 +57,9 @@ func (w *wanted) newBlock(of db.OffGridBlock) (b *block, isAny bool) {
 const blockOscillators = 64
 
 // offGrid fills in oscillators off the grid, given by position: kept ones from the store,
-// others from samples, and keeps these.
+// others from samples, and keeps these. Beside what another solver computed nothing is kept.
 func (s *source) offGrid(ctx context.Context, o *ordinates, motions []motion, out *unfit, missing []int) error {
-	if s.method != defaultMethod {
+	if s.method != defaultMethod || s.snapshot.Generation.Solver != spectrum.Version {
 		return s.compute(ctx, o, motions, out, upTo(len(motions)), newTask(o, missing))
 	}
 	if len(missing) == 0 {

@@ -184,7 +184,7 @@ func TestOtherMethodsAreNotKept(t *testing.T) {
 func TestOscillatorsThatComeAgain(t *testing.T) {
 	store := newStore(t, handGrid, keptRecords())
 	for range 2 { // computed, then kept
-		err := view(t.Context(), store, 0, func(snapshot *db.Snapshot) error {
+		err := view(t.Context(), store, &Selection{}, func(snapshot *db.Snapshot) error {
 			p, err := pick(t.Context(), snapshot, Selection{Component: ComponentH1, Siting: SitingGround}, db.DetailMotion)
 			if err != nil {
 				return err

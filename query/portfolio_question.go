@@ -82,7 +82,7 @@ func (q PortfolioQuestion) Ask(ctx context.Context, store *db.Store) (*Portfolio
 		return nil, err
 	}
 	var answer *PortfolioAnswer
-	err = view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, &q.Selection, func(snapshot *db.Snapshot) error {
 		answer, err = q.answer(ctx, snapshot)
 		return err
 	})

@@ -104,7 +104,7 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 		return nil, err
 	}
 	answer := &RecordsAnswer{}
-	err = view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, &q.Selection, func(snapshot *db.Snapshot) error {
 		picked, err := pick(ctx, snapshot, q.Selection, db.AllDetails)
 		if picked == nil {
 			return err

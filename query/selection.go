@@ -170,7 +170,10 @@ func joinWords[T ~string](words []T) string {
 type Selection struct {
 	// AsOf is the number of a run: what was published when it had ended, or what it held
 	// back, is asked. 0 asks what is published.
-	AsOf      int64
+	AsOf int64
+	// AnySolver takes what is stored as any solver computed it. What is not, this program
+	// computes.
+	AnySolver bool
 	Where     string // "" takes all
 	Scope     Scope
 	Component Component

@@ -15,12 +15,16 @@ import (
 )
 
 // view runs f on a snapshot that this program's solver computed: of the published edition,
-// or of that of a run where one is given.
-func view(ctx context.Context, store *db.Store, asOf int64, f func(*db.Snapshot) error) error {
-	return viewAny(ctx, store, asOf, func(snapshot *db.Snapshot) error {
+// or of that of a run where one is given; or on one that any solver computed where that is
+// wanted.
+func view(ctx context.Context, store *db.Store, of *Selection, f func(*db.Snapshot) error) error {
+	return viewAny(ctx, store, of.AsOf, func(snapshot *db.Snapshot) error {
+		if of.AnySolver {
+			return f(snapshot)
+		}
 		err := snapshot.Generation.CheckSolver(spectrum.Version)
-		if err != nil && asOf != 0 { // there is nothing to be done about it
-			err = fmt.Errorf("%w: what run %d left comes from solver %q, this program has %q", db.ErrOtherGeneration, asOf, snapshot.Generation.Solver, spectrum.Version)
+		if err != nil && of.AsOf != 0 { // there is nothing to be done about it
+			err = fmt.Errorf("%w: what run %d left comes from solver %q, this program has %q", db.ErrOtherGeneration, of.AsOf, snapshot.Generation.Solver, spectrum.Version)
 		}
 		if err != nil {
 			return err

@@ -54,7 +54,7 @@ func (q SpectrumQuestion) Ask(ctx context.Context, store *db.Store) (*SpectrumAn
 		return nil, err
 	}
 	var answer *SpectrumAnswer
-	err = view(ctx, store, q.AsOf, func(snapshot *db.Snapshot) error {
+	err = view(ctx, store, &q.Selection, func(snapshot *db.Snapshot) error {
 		answer, err = q.answer(ctx, snapshot)
 		return err
 	})

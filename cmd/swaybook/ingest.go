@@ -77,8 +77,8 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	o.pipeline.Paths = c.Args().Slice()
 	o.pipeline.Workers = c.Int("workers")
 	o.pipeline.SkipRotation = !c.Bool("rotation")
-	if n := c.Int("workers"); c.IsSet("workers") && (n < 1 || n > maxWorkers) {
-		return o, usagef("--workers %d: want 1 to %d", n, maxWorkers)
+	if err := checkWorkers(c); err != nil {
+		return o, err
 	}
 	if _, err := os.Stat(o.store); err != nil && len(o.pipeline.Paths) == 0 {
 		return o, fmt.Errorf("find store: %w", err) // nothing is held that could be conditioned
@@ -89,6 +89,13 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 		}
 	}
 	return o, o.describe(c)
+}
+
+func checkWorkers(c *cli.Context) error {
+	if n := c.Int("workers"); c.IsSet("workers") && (n < 1 || n > maxWorkers) {
+		return usagef("--workers %d: want 1 to %d", n, maxWorkers)
+	}
+	return nil
 }
 
 // describe reads what the flags say of files and spectra, and the files that they name,

@@ -25,6 +25,7 @@ const (
 	exitFailed      = 1
 	exitUsage       = 2
 	exitRejected    = 3 // done, but some files were rejected
+	exitHeld        = 4 // done, but the results are held back
 	exitLocked      = 5 // another run holds the store
 	exitInterrupted = 130
 )
@@ -68,19 +69,29 @@ func exitCode(err error, stderr io.Writer) int {
 	if err == nil {
 		return exitDone
 	}
-	if errors.Is(err, errRejected) {
+	code := rank(err)
+	if code == exitInterrupted && !errors.Is(err, errInterrupted) {
+		err = errInterrupted
+	}
+	if code != exitRejected {
+		fmt.Fprintln(stderr, "swaybook: "+err.Error())
+	}
+	return code
+}
+
+// rank is the exit code of an error, nil for none.
+func rank(err error) int {
+	switch {
+	case err == nil:
+		return exitDone
+	case errors.Is(err, errRejected):
 		return exitRejected
-	}
-	stopped := errors.Is(err, errInterrupted)
-	if !stopped && errors.Is(err, context.Canceled) {
-		err, stopped = errInterrupted, true
-	}
-	fmt.Fprintln(stderr, "swaybook: "+err.Error())
-	if stopped {
+	case errors.Is(err, errInterrupted), errors.Is(err, context.Canceled):
 		return exitInterrupted
-	}
-	if isUsage(err) {
+	case isUsage(err):
 		return exitUsage
+	case errors.Is(err, errHeld):
+		return exitHeld
 	}
 	if _, ok := errors.AsType[*db.LockedError](err); ok {
 		return exitLocked
@@ -103,7 +114,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Description: "Reads record files into a store, computes their response spectra, and answers for a structure\n" +
 			"what displacement, base shear and base moment the recorded motions produced.\n\n" +
 			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected;\n" +
-			"5 another run holds the store; 130 interrupted.\n\n" + caution,
+			"4 done, but the results are held back; 5 another run holds the store; 130 interrupted.\n\n" + caution,
 		Flags:  globalFlags(),
 		Before: checkGlobalFlags,
 		// The name of a file may hold commas; lists are for their own flags to read.

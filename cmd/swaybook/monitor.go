@@ -112,6 +112,17 @@ func (m *monitor) verified(v pipeline.Verified) {
 	m.show(v.Stage, map[string]string{pipeline.VerifyReading: "series", pipeline.VerifyComputing: "results"}[v.Stage], v.Done, v.Total)
 }
 
+// asked takes note of one question of a study asked.
+func (m *monitor) asked(done, total int) { m.question("asking", done, total) }
+
+// compared takes note of one compared.
+func (m *monitor) compared(done, total int) { m.question("comparing", done, total) }
+
+func (m *monitor) question(stage string, done, total int) {
+	m.enter(stage)
+	m.show(stage, "questions", done, total)
+}
+
 // enter begins another stage.
 func (m *monitor) enter(stage string) {
 	if m.stage != stage {

@@ -60,29 +60,37 @@ type pruneReport struct {
 }
 
 func runPrune(ctx context.Context, store *db.Store, o pruneOptions, w io.Writer) error {
-	before, err := store.Size(ctx)
+	r, err := prune(ctx, store, o)
 	if err != nil {
 		return err
+	}
+	if o.json {
+		return writeJSON(w, r)
+	}
+	return r.print(w)
+}
+
+// prune removes editions and says what that freed.
+func prune(ctx context.Context, store *db.Store, o pruneOptions) (*pruneReport, error) {
+	before, err := store.Size(ctx)
+	if err != nil {
+		return nil, err
 	}
 	p, err := store.Prune(ctx, o.keep)
 	if err == nil && o.shrink {
 		err = store.Shrink(ctx)
 	}
 	if err != nil {
-		return err
+		return nil, err
 	}
 	after, err := store.Size(ctx)
 	if err != nil {
-		return err
+		return nil, err
 	}
-	r := pruneReport{
+	return &pruneReport{
 		Store: store.Path(), Editions: append([]int64{}, p.Editions...), Rows: p.Rows, Computations: p.Computations, Spectra: p.Spectra, Series: p.Series,
 		OffGrid: p.OffGridRows, Generations: p.Generations, Before: before.Used, Used: after.Used, File: after.File,
-	}
-	if o.json {
-		return writeJSON(w, r)
-	}
-	return r.print(w)
+	}, nil
 }
 
 func (r *pruneReport) print(w io.Writer) error {

@@ -168,8 +168,9 @@ func parseInto[T any](dst *T, c *cli.Context, flag string, parse func(string) (T
 	return ofFlag(flag, err)
 }
 
-// statistics is an answer that can be written in units.
+// statistics is an answer that can be written in units, and compared.
 type statistics interface {
+	query.Compared
 	Write(w io.Writer, format query.Format, units query.Units) error
 	Remarks() string
 }

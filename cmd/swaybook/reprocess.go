@@ -1,7 +1,6 @@
 package main
 
 import (
-	"context"
 	"errors"
 	"fmt"
 	"io"
@@ -16,15 +15,23 @@ import (
 func reprocessCommand() *cli.Command {
 	return &cli.Command{
 		Name:      "reprocess",
-		Usage:     "check what a study would do",
+		Usage:     "make a store that of a study's files as they are, and write the answers that the study asks for",
 		ArgsUsage: "STUDY.toml",
 		Description: "A study names a store, the sources that fill it, how it is computed, and the questions whose answers are written\n" +
-			"after each run; README.md has its keys. It needs --check: the study is read with all that it names, every mistake is\n" +
-			"reported, and the plan is printed. Nothing is written.\n\n" +
-			"Exit codes: 0 the study is right; 1 something that it names cannot be read, or a source holds nothing; 2 it is wrong.",
+			"after each run; README.md has its keys. Nothing is computed that was computed before of the same samples in the same\n" +
+			"way. What questions read changes at the end, at once, or not at all: what differs too much from what is published is\n" +
+			"held back, for swaybook runs publish to publish it.\n\n" +
+			"With --check the study is read with all that it names, every mistake is reported, and the plan is printed. Nothing is\n" +
+			"written.\n\n" +
+			"Exit codes: 0 done; 1 failed: something that the study names cannot be read, a source holds nothing, or the run could\n" +
+			"not be finished; 2 the study is wrong; 3 done, but some files were rejected; 4 done, but the results are held back;\n" +
+			"5 another run holds the store; 130 interrupted.",
 		Flags: []cli.Flag{
 			&cli.BoolFlag{Name: "check", DisableDefaultText: true, Usage: "check the study and show the plan without doing it"},
-			&cli.BoolFlag{Name: "json", DisableDefaultText: true, Usage: "print the plan as JSON"},
+			&cli.BoolFlag{Name: "rehash", DisableDefaultText: true, Usage: "read all files again, whatever their sizes and times say"},
+			&cli.StringFlag{Name: "max-drift", Usage: "hold results back that differ from the published ones by more than this `RATIO`, such as 5% (default: the study's)"},
+			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files in work at the same time"},
+			asJSONFlag("plan, or what became of the run,"),
 		},
 		Action: func(c *cli.Context) error {
 			if c.NArg() != 1 {
@@ -33,21 +40,36 @@ func reprocessCommand() *cli.Command {
 			if c.IsSet("store") {
 				return usagef("--store does not go with reprocess: the study names its store")
 			}
-			plan, err := readStudyPlan(c, c.Args().First())
+			o, err := newReprocessOptions(c)
 			if err != nil {
 				return err
 			}
-			if c.Bool("check") {
-				return plan.print(c.App.Writer, c.Bool("json"))
+			plan, err := readStudyPlan(c, c.Args().First())
+			if err != nil {
+				if plan != nil && plan.study != nil && !c.Bool("check") && rank(err) == exitFailed {
+					err = errors.Join(err, plan.leaveFailure(err))
+				}
+				return err
 			}
-			return runReprocess(c.Context, plan, c.App.Writer)
+			if c.Bool("check") {
+				return plan.print(c.App.Writer, o.json)
+			}
+			plan.ingest.pipeline.Workers = c.Int("workers")
+			return runReprocess(c.Context, plan, o, c.App.Writer)
 		},
 	}
 }
 
-// runReprocess carries out a plan that was checked.
-func runReprocess(_ context.Context, plan *studyPlan, _ io.Writer) error {
-	return usagef("%s is right; reprocess needs --check, since it only shows the plan", plan.study.File)
+func newReprocessOptions(c *cli.Context) (o reprocessOptions, err error) {
+	o.rehash, o.json = c.Bool("rehash"), c.Bool("json")
+	if c.IsSet("max-drift") {
+		bound, errBound := study.ParseRatio(c.String("max-drift"))
+		if errBound != nil {
+			err = usagef("--max-drift %q: %w", c.String("max-drift"), errBound)
+		}
+		o.maxDrift = &bound
+	}
+	return o, errors.Join(err, checkWorkers(c))
 }
 
 // maxStudy bounds the file of a study in bytes, above what its reader takes.

@@ -77,13 +77,17 @@ func newRunReport(d *db.RunDetails) (r runReport, err error) {
 	if d.Before != 0 {
 		r.Before, r.RecipeBefore = &d.Before, &d.BeforeGeneration.Recipe.Name
 	}
-	if c := d.Changes; c != nil {
-		r.Changes = &changeReport{
-			Records: newChangeRow(c.Records), Components: newChangeRow(c.Components), Recomputed: newCodeReport(c.Recomputed), Events: newChangeRow(c.Events),
-			Stations: newChangeRow(c.Stations), Files: newChangeRow(c.Files), Rejections: newChangeRow(c.Rejections),
-		}
+	if d.Changes != nil {
+		r.Changes = newChangeReport(d.Changes)
 	}
 	return r, nil
+}
+
+func newChangeReport(c *db.Changes) *changeReport {
+	return &changeReport{
+		Records: newChangeRow(c.Records), Components: newChangeRow(c.Components), Recomputed: newCodeReport(c.Recomputed), Events: newChangeRow(c.Events),
+		Stations: newChangeRow(c.Stations), Files: newChangeRow(c.Files), Rejections: newChangeRow(c.Rejections),
+	}
 }
 
 func showRun(ctx context.Context, store *db.Store, run int64, asJSON bool, w io.Writer) error {
@@ -133,29 +137,34 @@ func (r *runReport) printChanges(p *printer) {
 	default:
 		p.printf("Changed since edition %d:\n", *r.Before)
 	}
+	r.Changes.print(p, maxLines)
+}
+
+// print writes the counts, and so many codes of each.
+func (c *changeReport) print(p *printer, codes int) {
 	for _, kind := range []struct {
 		name string
 		row  changeRow
 	}{
-		{"records", r.Changes.Records}, {"components", r.Changes.Components}, {"events", r.Changes.Events}, {"stations", r.Changes.Stations},
-		{"files", r.Changes.Files}, {"rejections", r.Changes.Rejections},
+		{"records", c.Records}, {"components", c.Components}, {"events", c.Events}, {"stations", c.Stations},
+		{"files", c.Files}, {"rejections", c.Rejections},
 	} {
-		p.codes(kind.name+" added", kind.row.Added)
-		p.codes(kind.name+" removed", kind.row.Removed)
-		p.codes(kind.name+" changed", kind.row.Changed)
+		p.codes(kind.name+" added", kind.row.Added, codes)
+		p.codes(kind.name+" removed", kind.row.Removed, codes)
+		p.codes(kind.name+" changed", kind.row.Changed, codes)
 	}
-	p.codes("computed anew", r.Changes.Recomputed)
+	p.codes("computed anew", c.Recomputed, codes)
 }
 
 // codes prints a count and the first codes, a line each, nothing where there is none.
-func (p *printer) codes(what string, c codeReport) {
+func (p *printer) codes(what string, c codeReport, most int) {
 	if c.Count == 0 {
 		return
 	}
 	p.printf("  %-20s %7d\n", what, c.Count)
 	for i, code := range c.Codes {
-		if i == maxLines {
-			p.printf("    … and %d more; --json lists them\n", c.Count-maxLines)
+		if i == most {
+			p.printf("    … and %d more; --json lists them\n", c.Count-most)
 			return
 		}
 		p.printf("    %s\n", code)

@@ -26,6 +26,7 @@ type studyPlan struct {
 	ingest   ingestOptions
 	sources  []sourcePlan
 	products []product
+	watched  []product // spectra of the selections that no product asks for spectra of
 }
 
 // sourcePlan is what one source holds.
@@ -260,16 +261,29 @@ func (p *planner) output(key string, file study.Text) {
 	}
 }
 
-// selections checks the selections that no product uses, as those of statistics.
+// selections has the spectra of the selections watched that no product asks for spectra of.
+// What is wrong with one that a product uses, its question tells.
 func (p *planner) selections() {
 	s := p.plan.study
 	for _, chosen := range s.Selections {
-		if slices.ContainsFunc(s.Products, func(product study.Product) bool { return product.Selection == chosen.Name }) {
+		isUsed, isWatched := false, false
+		for _, product := range s.Products {
+			if product.Selection == chosen.Name {
+				isUsed, isWatched = true, isWatched || product.Kind == study.Spectrum
+			}
+		}
+		if isWatched {
 			continue
 		}
 		c, wrong := flagContext(p.c, querySpectrumCommand(), chosen.Settings)
-		_, err := newSpectrumAsker(c)
-		p.blame(errors.Join(append(wrong, err)...), chosen.Settings, chosen.Line, chosen.Path())
+		ask, err := newSpectrumAsker(c)
+		err = errors.Join(append(wrong, err)...)
+		switch {
+		case err == nil:
+			p.plan.watched = append(p.plan.watched, product{path: chosen.Path(), name: chosen.Name, kind: study.Spectrum, selection: chosen.Name, settings: chosen.Settings, ask: ask})
+		case !isUsed:
+			p.blame(err, chosen.Settings, chosen.Line, chosen.Path())
+		}
 	}
 }
 
@@ -279,7 +293,7 @@ func (p *planner) products() {
 		c, wrong := flagContext(p.c, productCommands[described.Kind](), described.Settings)
 		ask, err := newQuestion[described.Kind](c)
 		p.blame(errors.Join(append(wrong, err)...), described.Settings, described.Line, described.Path())
-		out := product{name: described.Name, kind: described.Kind, selection: described.Selection, settings: described.Settings, ask: ask}
+		out := product{path: described.Path(), name: described.Name, kind: described.Kind, selection: described.Selection, settings: described.Settings, ask: ask}
 		for _, f := range described.Files {
 			out.files = append(out.files, outputFile{f.Value, fileFormats[f.Format]})
 		}

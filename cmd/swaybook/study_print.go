@@ -3,7 +3,6 @@ package main
 import (
 	"fmt"
 	"io"
-	"strconv"
 	"strings"
 	"text/tabwriter"
 
@@ -175,7 +174,7 @@ func (p *studyPlan) printWayIn(out *printer, r *planReport) {
 	out.printf("dampings\t%s\n", gridWords(r.Grid.Dampings, "", r.Store.IsNew))
 	drift, keep := "published whatever changed", "all editions"
 	if r.MaxDrift != nil {
-		drift = fmt.Sprintf("held back beyond %s %%", strconv.FormatFloat(100**r.MaxDrift, 'g', 6, 64))
+		drift = "held back beyond " + percentWords(*r.MaxDrift)
 	}
 	if r.Keep != nil {
 		keep = fmt.Sprintf("editions: %d", *r.Keep)

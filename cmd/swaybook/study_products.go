@@ -14,6 +14,7 @@ import (
 
 // product is a question of a study, ready to be asked.
 type product struct {
+	path      string // the table that describes it: of a selection that is watched, this
 	name      string
 	kind      study.Kind
 	selection string // "" where it names none
@@ -33,12 +34,20 @@ var fileFormats = map[study.Format]query.Format{
 	study.CSV: query.FormatCSV, study.JSON: query.FormatJSON, study.TXT: query.FormatTable,
 }
 
+// moment is a state of the store: what a run left, 0 for what is published; of any solver,
+// as it was computed, or of this program's.
+type moment struct {
+	run       int64
+	anySolver bool
+}
+
 // asker asks a question of a store.
-type asker func(context.Context, *db.Store) (answer, error)
+type asker func(ctx context.Context, store *db.Store, at moment) (answer, error)
 
 // answer can be written in any format. Remarks belong to it and go to people where the
 // format has no room for them.
 type answer interface {
+	query.Compared
 	Write(io.Writer, query.Format) error
 	Remarks() string
 }
@@ -54,8 +63,15 @@ func (a inUnits) Write(w io.Writer, f query.Format) error { return a.statistics.
 // list is an answer of records.
 type list struct {
 	writer
+	query.Compared
 	remarks string
 }
+
+// unmeasured is what has nothing by which it could be compared.
+type unmeasured struct{}
+
+func (unmeasured) Figures() []query.Figure { return nil }
+func (unmeasured) Motions() []query.Motion { return nil }
 
 func (l list) Remarks() string { return l.remarks }
 
@@ -67,9 +83,9 @@ var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 }
 
 // askIn asks for statistics in units.
-func askIn[A statistics](units query.Units, ask func(context.Context, *db.Store) (A, error)) asker {
-	return func(ctx context.Context, store *db.Store) (answer, error) {
-		a, err := ask(ctx, store)
+func askIn[A statistics](units query.Units, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
+	return func(ctx context.Context, store *db.Store, at moment) (answer, error) {
+		a, err := ask(ctx, store, at)
 		if err != nil {
 			return nil, err
 		}
@@ -79,7 +95,12 @@ func askIn[A statistics](units query.Units, ask func(context.Context, *db.Store)
 
 func newSpectrumAsker(c *cli.Context) (asker, error) {
 	o, err := newSpectrumOptions(c)
-	return askIn(o.units, o.question.Ask), validated(err, o.question.Validate, o.question.Selection)
+	ask := func(ctx context.Context, store *db.Store, at moment) (*query.SpectrumAnswer, error) {
+		q := o.question
+		q.AsOf, q.AnySolver = at.run, at.anySolver
+		return q.Ask(ctx, store)
+	}
+	return askIn(o.units, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newDemandAsker(c *cli.Context) (asker, error) {
@@ -87,29 +108,41 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 		return newPortfolioAsker(c)
 	}
 	o, err := newDemandOptions(c)
-	return askIn(o.units, o.question.Ask), validated(err, o.question.Validate, o.question.Selection)
+	ask := func(ctx context.Context, store *db.Store, at moment) (*query.DemandAnswer, error) {
+		q := o.question
+		q.AsOf, q.AnySolver = at.run, at.anySolver
+		return q.Ask(ctx, store)
+	}
+	return askIn(o.units, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newPortfolioAsker(c *cli.Context) (asker, error) {
 	o, err := newPortfolioOptions(c)
-	return askIn(o.units, o.ask), validated(err, o.validate, o.question.Selection)
+	ask := func(ctx context.Context, store *db.Store, at moment) (statistics, error) {
+		asked := o
+		asked.question.AsOf, asked.question.AnySolver = at.run, at.anySolver
+		return asked.ask(ctx, store)
+	}
+	return askIn(o.units, ask), validated(err, o.validate, o.question.Selection)
 }
 
 func newRecordsAsker(c *cli.Context) (asker, error) {
 	o, err := newRecordsOptions(c)
-	ask := func(ctx context.Context, store *db.Store) (answer, error) {
+	ask := func(ctx context.Context, store *db.Store, at moment) (answer, error) {
 		if o.list != nil {
-			a, err := o.list(ctx, store, o.question.AsOf)
-			return list{a, ""}, err
+			a, err := o.list(ctx, store, at.run)
+			return list{a, unmeasured{}, ""}, err
 		}
-		a, err := o.question.Ask(ctx, store)
+		q := o.question
+		q.AsOf, q.AnySolver = at.run, at.anySolver
+		a, err := q.Ask(ctx, store)
 		if empty, ok := errors.AsType[*query.EmptyError](err); ok { // a list may be empty
-			return list{a, empty.Error() + "\n"}, nil
+			return list{a, a, empty.Error() + "\n"}, nil
 		}
 		if err != nil {
 			return nil, err
 		}
-		return list{a, a.Selection.Remarks()}, nil
+		return list{a, a, a.Selection.Remarks()}, nil
 	}
 	return ask, validated(err, o.question.Validate, o.question.Selection)
 }

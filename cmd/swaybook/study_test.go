@@ -146,7 +146,7 @@ func TestProductsAnswerAsCommands(t *testing.T) {
 	}
 	files := 0
 	for _, p := range plan.products {
-		a, err := p.ask(ctx, store)
+		a, err := p.ask(ctx, store, moment{})
 		if err != nil {
 			t.Errorf("%s: %v", p.name, err)
 			continue

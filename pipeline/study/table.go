@@ -153,19 +153,33 @@ func (t *table) ratio(key string) *float64 {
 	case float64:
 		x = v
 	case string:
-		figure, isPercent := strings.CutSuffix(strings.TrimSpace(v), "%")
-		if figure = strings.TrimSpace(figure); isPercent {
-			figure += "e-2" // shifted in the text, the ratio is rounded once
-		}
-		x, err = strconv.ParseFloat(figure, 64)
+		x, err = ParseRatio(v)
 	default:
-		err = strconv.ErrSyntax
+		err = errRatio
 	}
-	if err != nil || !(x >= 0 && x <= maxRatio) {
-		t.fail(key, `want a ratio such as "5%%" or 0.05, from 0 to %d`, maxRatio)
+	if err != nil || !isRatio(x) {
+		t.fail(key, "%w", errRatio)
 		return nil
 	}
 	return &x
+}
+
+// errRatio says what a ratio looks like.
+var errRatio = fmt.Errorf(`want a ratio such as "5%%" or 0.05, from 0 to %d`, maxRatio)
+
+func isRatio(x float64) bool { return x >= 0 && x <= maxRatio }
+
+// ParseRatio reads "5%" or "0.05".
+func ParseRatio(text string) (float64, error) {
+	figure, isPercent := strings.CutSuffix(strings.TrimSpace(text), "%")
+	if figure = strings.TrimSpace(figure); isPercent {
+		figure += "e-2" // shifted in the text, the ratio is rounded once
+	}
+	x, err := strconv.ParseFloat(figure, 64)
+	if err != nil || !isRatio(x) {
+		return 0, errRatio
+	}
+	return x, nil
 }
 
 // table returns the table at key, nil where there is none.

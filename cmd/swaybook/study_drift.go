@@ -1,0 +1,300 @@
+package main
+
+import (
+	"cmp"
+	"context"
+	"fmt"
+	"math"
+	"slices"
+	"strconv"
+
+	"swaybook/db"
+	"swaybook/query"
+)
+
+// driftReport says by how much the figures of a study differ from the published ones.
+type driftReport struct {
+	Edition int64    `json:"edition"`
+	Since   int64    `json:"since"` // the edition that was published
+	Bound   *float64 `json:"bound"` // null where the study has none
+	Beyond  int      `json:"beyond"`
+	// By what recipes and solvers the editions are computed.
+	RecipeBefore string         `json:"recipe_before"`
+	Recipe       string         `json:"recipe"`
+	SolverBefore string         `json:"solver_before"`
+	Solver       string         `json:"solver"`
+	Products     []productDrift `json:"products"` // the greatest change first
+}
+
+// productDrift is that of one product, or of a selection.
+type productDrift struct {
+	Product string        `json:"product"`
+	Figures int           `json:"figures"` // that were published
+	Changed int           `json:"changed"`
+	Beyond  int           `json:"beyond"`
+	Largest []figureDrift `json:"largest"`
+	Causes  []driftCause  `json:"causes"`
+}
+
+// figureDrift is one figure, in the unit that of names, null where there is none.
+type figureDrift struct {
+	Of     string   `json:"of"`
+	Figure string   `json:"figure"`
+	Before *float64 `json:"before"`
+	After  *float64 `json:"after"`
+	Change *float64 `json:"change"` // ratio, null for one without limit: lost, or from 0
+	Beyond bool     `json:"is_beyond"`
+}
+
+// driftCause is what happened to motions of the selection.
+type driftCause struct {
+	Cause string `json:"cause"`
+	codeReport
+}
+
+// maxFigures is how many changes of a product JSON lists, and shownFigures the text.
+const maxFigures, shownFigures = 100, 5
+
+// comparison compares what an edition answers with what another does.
+type comparison struct {
+	outputs *outputs
+	bound   *float64
+	changes *db.Changes
+	report  *driftReport
+}
+
+// compare asks all products as of the published edition too. Its answers are those to the
+// study's questions of today, so that a question that changed is no drift.
+func (r *studyRun) compare(ctx context.Context, edition, published int64) error {
+	changes, err := r.store.ChangesSince(ctx, published, edition)
+	if err != nil {
+		return err
+	}
+	r.state.Changes = newChangeReport(changes)
+	c := &comparison{outputs: r.outputs, bound: r.bound(), changes: changes, report: &driftReport{Edition: edition, Since: published, Bound: r.bound(), Products: []productDrift{}}}
+	r.state.Drift = c.report
+	if c.report.RecipeBefore, c.report.SolverBefore, err = madeBy(ctx, r.store, published); err != nil {
+		return err
+	}
+	if c.report.Recipe, c.report.Solver, err = madeBy(ctx, r.store, edition); err != nil {
+		return err
+	}
+	asked := r.watched()
+	for i := range asked {
+		r.plan.ingest.monitor.compared(i, len(asked))
+		if err := c.product(ctx, &asked[i]); err != nil {
+			return err
+		}
+	}
+	slices.SortStableFunc(c.report.Products, func(a, b productDrift) int { return cmp.Compare(b.greatest(), a.greatest()) })
+	return nil
+}
+
+// madeBy is by what recipe and solver an edition is computed.
+func madeBy(ctx context.Context, store *db.Store, edition int64) (recipe, solver string, err error) {
+	err = store.ViewAsOf(ctx, edition, func(s *db.Snapshot) error {
+		recipe, solver = s.Generation.Recipe.Name, s.Generation.Solver
+		return nil
+	})
+	return recipe, solver, err
+}
+
+// product compares one product.
+func (c *comparison) product(ctx context.Context, p *product) error {
+	before, err := c.outputs.ask(ctx, p, moment{c.report.Since, true})
+	if err != nil {
+		return err
+	}
+	was, is := before.compared(), c.outputs.answers[p.path].compared()
+	figures := was.Figures()
+	out := productDrift{Product: p.path, Figures: len(figures), Largest: []figureDrift{}}
+	for _, d := range query.Drifts(figures, is.Figures()) {
+		isBeyond := c.bound != nil && d.Loss() > *c.bound
+		out.Changed++
+		if isBeyond {
+			out.Beyond++
+		}
+		if len(out.Largest) < maxFigures {
+			out.Largest = append(out.Largest, figureDrift{d.Of, d.Name, finite(d.Before), finite(d.After), finite(d.Ratio()), isBeyond})
+		}
+	}
+	out.Causes = causesOf(was.Motions(), is.Motions(), c.changes)
+	c.report.Beyond += out.Beyond
+	if out.Changed > 0 || len(out.Causes) > 0 {
+		c.report.Products = append(c.report.Products, out)
+	}
+	return nil
+}
+
+// compared is the answer, or one without figures where there is none.
+func (r reply) compared() query.Compared {
+	if r.empty != nil {
+		return unmeasured{}
+	}
+	return r.answer
+}
+
+// finite is a number for JSON, nil where that has none.
+func finite(x float64) *float64 {
+	if math.IsNaN(x) || math.IsInf(x, 0) {
+		return nil
+	}
+	return &x
+}
+
+// greatest is the greatest change of a product, infinite where there is no limit to it.
+func (p *productDrift) greatest() float64 {
+	if len(p.Largest) == 0 {
+		return 0
+	}
+	if x := p.Largest[0].Change; x != nil {
+		return math.Abs(*x)
+	}
+	return math.Inf(1)
+}
+
+// causesOf says what happened to the motions of a selection.
+func causesOf(before, after []query.Motion, c *db.Changes) []driftCause {
+	was, is := motionsByCode(before), motionsByCode(after)
+	by := map[string][]string{}
+	for _, m := range after {
+		code := codeOf(m)
+		if _, both := was[code]; !both {
+			cause := joinedBy(m, c)
+			by[cause] = append(by[cause], code)
+		} else if isRecomputed(m, c) {
+			by[causeComputed] = append(by[causeComputed], code)
+		}
+	}
+	for _, m := range before {
+		if code := codeOf(m); is[code].Record == "" {
+			cause := leftBy(m, c)
+			by[cause] = append(by[cause], code)
+		}
+	}
+	out := []driftCause{}
+	for _, cause := range causes {
+		if codes := by[cause]; len(codes) > 0 {
+			out = append(out, driftCause{cause, newCodeReport(codes)})
+		}
+	}
+	return out
+}
+
+// What happens to motions, in the order of reports.
+const (
+	causeAdded     = "records added"
+	causeRemoved   = "records removed"
+	causeJoined    = "selected by changed metadata"
+	causeLeft      = "no longer selected by changed metadata"
+	causeSelected  = "selected now"
+	causeForgotten = "no longer selected"
+	causeComputed  = "computed anew"
+)
+
+var causes = []string{causeAdded, causeRemoved, causeJoined, causeLeft, causeSelected, causeForgotten, causeComputed}
+
+func codeOf(m query.Motion) string { return m.Record + " " + m.Role }
+
+func motionsByCode(motions []query.Motion) map[string]query.Motion {
+	out := make(map[string]query.Motion, len(motions))
+	for _, m := range motions {
+		out[codeOf(m)] = m
+	}
+	return out
+}
+
+// hasAny reports whether a sorted list has any of the codes.
+func hasAny(list []string, codes ...string) bool {
+	return slices.ContainsFunc(codes, func(code string) bool {
+		_, found := slices.BinarySearch(list, code)
+		return found
+	})
+}
+
+// components are the codes of what a motion is made of, and its own.
+func components(m query.Motion) []string {
+	out := []string{codeOf(m)}
+	for _, role := range m.Members {
+		out = append(out, m.Record+" "+role)
+	}
+	return out
+}
+
+func joinedBy(m query.Motion, c *db.Changes) string {
+	switch {
+	case hasAny(c.Records.Added, m.Record), hasAny(c.Components.Added, components(m)...):
+		return causeAdded
+	case isChanged(m, c):
+		return causeJoined
+	}
+	return causeSelected
+}
+
+func leftBy(m query.Motion, c *db.Changes) string {
+	switch {
+	case hasAny(c.Records.Removed, m.Record), hasAny(c.Components.Removed, components(m)...):
+		return causeRemoved
+	case isChanged(m, c):
+		return causeLeft
+	}
+	return causeForgotten
+}
+
+func isChanged(m query.Motion, c *db.Changes) bool {
+	return hasAny(c.Records.Changed, m.Record) || hasAny(c.Components.Changed, components(m)...) ||
+		hasAny(c.Events.Changed, m.Event) || hasAny(c.Events.Added, m.Event)
+}
+
+func isRecomputed(m query.Motion, c *db.Changes) bool { return hasAny(c.Recomputed, components(m)...) }
+
+// print writes the changes with their causes, the greatest first.
+func (d *driftReport) print(p *printer) {
+	p.printf("Results against edition %d, which was published:\n", d.Since)
+	if d.RecipeBefore != d.Recipe {
+		p.printf("  the recipe was %s, and is %s\n", d.RecipeBefore, d.Recipe)
+	}
+	if d.SolverBefore != d.Solver {
+		p.printf("  the solver was %s, and is %s\n", d.SolverBefore, d.Solver)
+	}
+	if len(d.Products) == 0 {
+		p.printf("  as before\n")
+	}
+	for i := range d.Products {
+		if i == maxLines {
+			p.printf("  … and %d more; --json lists them\n", len(d.Products)-maxLines)
+			return
+		}
+		d.Products[i].print(p, d.Bound)
+	}
+}
+
+func (p *productDrift) print(out *printer, bound *float64) {
+	out.printf("  %s: figures %d, changed %d", p.Product, p.Figures, p.Changed)
+	if bound != nil {
+		out.printf(", beyond %s %d", percentWords(*bound), p.Beyond)
+	}
+	out.printf("\n")
+	for _, f := range p.Largest[:min(len(p.Largest), shownFigures)] {
+		out.printf("    %-28s %-6s %11s to %-11s %s\n", f.Of, f.Figure, numberWords(f.Before), numberWords(f.After), changeWords(f.Change))
+	}
+	for _, c := range p.Causes {
+		out.printf("    %s: motions %d, first %s\n", c.Cause, c.Count, c.Codes[0])
+	}
+}
+
+func percentWords(ratio float64) string { return strconv.FormatFloat(100*ratio, 'g', 6, 64) + " %" }
+
+func numberWords(x *float64) string {
+	if x == nil {
+		return "none"
+	}
+	return strconv.FormatFloat(*x, 'g', 4, 64)
+}
+
+func changeWords(x *float64) string {
+	if x == nil {
+		return "lost, or from 0"
+	}
+	return fmt.Sprintf("%+.3g %%", 100**x)
+}

@@ -1,0 +1,205 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"slices"
+
+	"swaybook/db"
+	"swaybook/pipeline"
+	"swaybook/query"
+)
+
+// reprocessOptions are what the command line says beside the study.
+type reprocessOptions struct {
+	rehash, json bool
+	maxDrift     *float64 // instead of the study's
+}
+
+// studyRun carries out a plan.
+type studyRun struct {
+	plan    *studyPlan
+	options reprocessOptions
+	store   *db.Store
+	outputs *outputs
+	state   studyState
+}
+
+// errHeld ends a run whose results are held back.
+var errHeld = errors.New("results are held back")
+
+// runReprocess carries out a plan, unless another run holds the store, and says what became
+// of it: in print, and in the files that the study wants it in.
+func runReprocess(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) error {
+	pipelined := &plan.ingest.pipeline
+	lock, err := db.TakeLock(ctx, plan.study.Store.Value, holder(pipelined.Started))
+	if _, isHeld := errors.AsType[*db.LockedError](err); isHeld {
+		return err // whoever holds it writes the state
+	}
+	r := &studyRun{plan: plan, options: o, state: *newStudyState(plan)}
+	if err == nil {
+		err = r.run(ctx)
+	}
+	plan.ingest.monitor.end()
+	r.state.end(err, pipelined.Clock(), pipelined.Started)
+	err = errors.Join(err, r.state.leave(plan.study.State.Value, plan.study.Metrics.Value))
+	if lock != nil {
+		err = errors.Join(err, lock.Release())
+	}
+	if errPrint := r.write(w); errPrint != nil && err == nil {
+		err = errPrint
+	}
+	return err
+}
+
+func (r *studyRun) write(w io.Writer) error {
+	if r.options.json {
+		return writeJSON(w, &r.state)
+	}
+	p := &printer{w: w}
+	r.print(p)
+	return p.err
+}
+
+// run makes the store that of the study's files, and writes what it asks for.
+func (r *studyRun) run(ctx context.Context) (err error) {
+	if r.store, err = db.Create(ctx, r.plan.study.Store.Value, pipeline.SolverVersion); err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, r.store.Close()) }()
+	decided, err := r.plan.decided()
+	if err != nil {
+		return err
+	}
+	opts := r.plan.ingest.pipeline
+	opts.Takes = r.plan.study.Takes
+	var before map[string]db.Written
+	if r.outputs, before, err = newOutputs(ctx, r.store, opts.Program); err != nil {
+		return err
+	}
+	done, err := pipeline.Reprocess(ctx, r.store, opts, pipeline.Study{
+		Name: r.plan.study.Name.Value, File: r.plan.study.Path(), Decided: decided, Rehash: r.options.rehash, Approve: r.approve,
+	})
+	r.note(done, err == nil)
+	if err == nil {
+		return r.follow(ctx, done, before)
+	}
+	if ctx.Err() != nil {
+		err = interruption(done.Summary)
+	}
+	if done.Published == done.Before {
+		err = errors.Join(err, r.outputs.set.Undo())
+	}
+	return errors.Join(err, r.outputs.set.Close())
+}
+
+// note takes over what the run did.
+func (r *studyRun) note(done pipeline.Reprocessed, isWhole bool) {
+	s := &r.state
+	s.Run, s.Edition, s.Published, s.Before = numbered(done.Run), numbered(done.Edition), numbered(done.Published), numbered(done.Before)
+	if s.IsRead = done.IsRead; done.IsRead {
+		report := newIngestReport(r.plan.ingest, done.Summary, isWhole)
+		s.Ingest = &report
+	}
+}
+
+// numbered is a number of a run, nil for none.
+func numbered(id int64) *int64 {
+	if id == 0 {
+		return nil
+	}
+	return &id
+}
+
+// follow does what comes after the state of the store is settled.
+func (r *studyRun) follow(ctx context.Context, done pipeline.Reprocessed, before map[string]db.Written) error {
+	if done.Damaged > 0 {
+		return errors.Join(fmt.Errorf("%s is damaged (records: %d)", r.plan.study.Store.Value, done.Damaged), r.outputs.set.Close())
+	}
+	if err := r.outputs.refresh(ctx, r.plan.products, done.Published); err != nil {
+		return err
+	}
+	if err := r.outputs.keep(ctx, r.plan.products, before); err != nil {
+		return err
+	}
+	r.state.Outputs = r.outputs.reports
+	if keep := r.plan.study.Keep; keep > 0 {
+		pruned, err := prune(ctx, r.store, pruneOptions{keep: keep})
+		if err != nil {
+			return err
+		}
+		r.state.Pruned = pruned
+	}
+	rejected, err := rejectedFiles(ctx, r.store)
+	if err != nil {
+		return err
+	}
+	r.state.Rejected = rejected
+	if done.IsHeld {
+		return fmt.Errorf("%w: figures beyond %s: %d; edition %d stays published", errHeld, percentWords(*r.bound()), r.state.Drift.Beyond, done.Published)
+	}
+	if rejected > 0 {
+		return errRejected
+	}
+	return nil
+}
+
+// rejectedFiles counts what is rejected of the files that questions know of, whether this
+// run read them or one before.
+func rejectedFiles(ctx context.Context, store *db.Store) (int, error) {
+	rejected, err := query.Rejections(ctx, store, 0)
+	if err != nil {
+		return 0, err
+	}
+	paths := map[string]bool{}
+	for _, one := range rejected.Rows {
+		paths[one.Source] = true
+	}
+	return len(paths), nil
+}
+
+// bound is how far results may differ from those published, nil for any distance.
+func (r *studyRun) bound() *float64 {
+	if r.options.maxDrift != nil {
+		return r.options.maxDrift
+	}
+	return r.plan.study.MaxDrift
+}
+
+// watched are the products, and the selections that are watched beside them.
+func (r *studyRun) watched() []product { return slices.Concat(r.plan.products, r.plan.watched) }
+
+// approve asks all questions as of the edition, compares the answers with those as of what is
+// published, and, where they may be published, has them written. So what cannot be asked or
+// written is never published.
+func (r *studyRun) approve(ctx context.Context, edition, published int64) (bool, error) {
+	asked := r.watched()
+	for i := range asked {
+		r.plan.ingest.monitor.asked(i, len(asked))
+		var err error
+		if r.outputs.answers[asked[i].path], err = r.outputs.ask(ctx, &asked[i], moment{run: edition}); err != nil {
+			return false, err
+		}
+	}
+	if published != 0 {
+		if err := r.compare(ctx, edition, published); err != nil {
+			return false, err
+		}
+		if r.state.Drift.Beyond > 0 {
+			clear(r.outputs.answers) // they are not those of what stays published
+			return false, nil
+		}
+	}
+	for i := range r.plan.products {
+		p := &r.plan.products[i]
+		if err := r.outputs.prepare(p, r.outputs.answers[p.path]); err != nil {
+			return false, err
+		}
+	}
+	if err := ctx.Err(); err != nil {
+		return false, err
+	}
+	return true, r.outputs.swap(r.plan.products, edition)
+}

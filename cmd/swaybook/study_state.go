@@ -1,0 +1,202 @@
+package main
+
+import (
+	"encoding/json"
+	"errors"
+	"fmt"
+	"io"
+	"time"
+
+	"swaybook/pipeline/beside"
+)
+
+// studyState is the last run of a study, as it is printed as JSON and left for monitoring.
+type studyState struct {
+	Study   string  `json:"study"` // the name
+	File    string  `json:"file"`
+	Store   string  `json:"store"`
+	Program string  `json:"program"`
+	Run     *int64  `json:"run"` // null where it came to none
+	Started string  `json:"started"`
+	Ended   string  `json:"ended"`
+	Seconds float64 `json:"seconds"`
+	// Outcome is published, unchanged, held, failed or interrupted.
+	Outcome  string  `json:"outcome"`
+	ExitCode int     `json:"exit_code"`
+	Error    *string `json:"error"`
+	// LastSuccess is when the last run ended that left what is published current.
+	LastSuccess *string `json:"last_success"`
+	// Edition is the newest, Published that which questions read, Before that which they
+	// read when the run began; null where there is none.
+	Edition   *int64 `json:"edition"`
+	Published *int64 `json:"published"`
+	Before    *int64 `json:"published_before"`
+	IsRead    bool   `json:"is_read"` // files were read, since something had changed
+	// Rejected counts what is rejected of the files as they are, by path.
+	Rejected int            `json:"rejected_files"`
+	Ingest   *ingestReport  `json:"ingest"`
+	Changes  *changeReport  `json:"changes"`
+	Drift    *driftReport   `json:"drift"`
+	Outputs  []outputReport `json:"outputs"`
+	Pruned   *pruneReport   `json:"pruned"`
+}
+
+// The outcomes of a study's run.
+const (
+	outcomePublished   = "published"
+	outcomeUnchanged   = "unchanged"
+	outcomeHeld        = "held"
+	outcomeFailed      = "failed"
+	outcomeInterrupted = "interrupted"
+)
+
+// newStudyState begins the account of a run.
+func newStudyState(p *studyPlan) *studyState {
+	o := &p.ingest.pipeline
+	s := &studyState{
+		Study: p.study.Name.Value, File: p.study.Path(), Store: p.study.Store.Value, Program: o.Program,
+		Started: o.Started.UTC().Format(time.RFC3339Nano), Outputs: []outputReport{},
+	}
+	s.LastSuccess = lastSuccess(p.study.State.Value)
+	return s
+}
+
+// lastSuccess is what the state of the run before says, nil where there is none that says it.
+func lastSuccess(file string) *string {
+	if file == "" {
+		return nil
+	}
+	text, err := readWhole(file, maxState)
+	if err != nil {
+		return nil
+	}
+	var before studyState
+	if json.Unmarshal(text, &before) != nil || before.LastSuccess == nil {
+		return nil
+	}
+	if _, err := time.Parse(time.RFC3339Nano, *before.LastSuccess); err != nil {
+		return nil
+	}
+	return before.LastSuccess
+}
+
+// maxState bounds a file of state in bytes: lists of files and codes are bounded.
+const maxState = 64 << 20
+
+// end closes the account with what became of the run.
+func (s *studyState) end(err error, ended, started time.Time) {
+	s.Ended, s.Seconds, s.ExitCode = ended.UTC().Format(time.RFC3339Nano), ended.Sub(started).Seconds(), rank(err)
+	switch s.ExitCode {
+	case exitDone, exitRejected:
+		s.LastSuccess = &s.Ended
+		s.Outcome = outcomeUnchanged
+		if isOther(s.Published, s.Before) {
+			s.Outcome = outcomePublished
+		}
+	case exitHeld:
+		s.Outcome = outcomeHeld
+	case exitInterrupted:
+		s.Outcome = outcomeInterrupted
+	default:
+		s.Outcome = outcomeFailed
+	}
+	if err != nil && s.ExitCode != exitRejected {
+		text := err.Error()
+		s.Error = &text
+	}
+}
+
+func isOther(a, b *int64) bool { return a != nil && (b == nil || *a != *b) }
+
+// leave writes the state and the metrics where the study wants them.
+func (s *studyState) leave(state, metrics string) error {
+	return errors.Join(
+		leaveFile("state", state, func(w io.Writer) error { return writeJSON(w, s) }),
+		leaveFile("metrics", metrics, s.writeMetrics))
+}
+
+// leaveFile writes a file whole.
+func leaveFile(what, path string, fill func(io.Writer) error) error {
+	if path == "" {
+		return nil
+	}
+	var set beside.Set
+	err := set.Write(path, fill)
+	if err == nil {
+		err = set.Swap()
+	}
+	if err = errors.Join(err, set.Close()); err != nil {
+		return fmt.Errorf("%s: %w", what, err)
+	}
+	return nil
+}
+
+// leaveFailure is the state of a run that came to nothing, since what its study names is
+// not there.
+func (p *studyPlan) leaveFailure(err error) error {
+	s := newStudyState(p)
+	s.end(err, p.ingest.pipeline.Clock(), p.ingest.pipeline.Started)
+	return s.leave(p.study.State.Value, p.study.Metrics.Value)
+}
+
+// print writes the account for people.
+func (r *studyRun) print(p *printer) {
+	s := &r.state
+	run := ""
+	if s.Run != nil {
+		run = fmt.Sprintf(", run %d", *s.Run)
+	}
+	p.printf("%s%s, %.1f s\n", s.Study, run, s.Seconds)
+	if s.Ingest != nil {
+		s.Ingest.print(p.w, false)
+	} else if s.Run != nil {
+		p.printf("No file has changed since the last run.\n")
+	}
+	if s.Changes != nil {
+		p.printf("Changed since edition %d, which was published:\n", *s.Before)
+		s.Changes.print(p, shownCodes)
+	}
+	if s.Drift != nil {
+		s.Drift.print(p)
+	}
+	r.printOutputs(p)
+	if s.Rejected > 0 && s.Ingest == nil {
+		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", s.Rejected, quoted(s.Store))
+	}
+	r.printEnd(p)
+}
+
+// shownCodes is how many codes of a kind the text of a run lists.
+const shownCodes = 5
+
+func (r *studyRun) printOutputs(p *printer) {
+	for _, o := range r.state.Outputs {
+		switch {
+		case !o.IsNew:
+		case o.Bytes == nil:
+			p.printf("no answer, so no file %s: %s\n", r.plan.study.Short(o.Path), o.Empty)
+		default:
+			p.printf("written %s\n", r.plan.study.Short(o.Path))
+		}
+	}
+}
+
+// printEnd says what questions read now.
+func (r *studyRun) printEnd(p *printer) {
+	s := &r.state
+	switch {
+	case s.Published == nil:
+		p.printf("Nothing is published.\n")
+	case isOther(s.Published, s.Before) && s.Before == nil:
+		p.printf("Edition %d is published.\n", *s.Published)
+	case isOther(s.Published, s.Before):
+		p.printf("Edition %d is published, before it was %d.\n", *s.Published, *s.Before)
+	case s.Outcome == outcomeHeld:
+		p.printf("Edition %d stays published; %d is held back. To look at it: query … --as-of %d; to publish it: swaybook --store %s runs publish %d\n",
+			*s.Published, *s.Edition, *s.Edition, quoted(s.Store), *s.Edition)
+	case s.Outcome == outcomeUnchanged && isOther(s.Edition, s.Published):
+		p.printf("Edition %d stays published, as somebody wished; the newest is %d.\n", *s.Published, *s.Edition)
+	default:
+		p.printf("Edition %d stays published.\n", *s.Published)
+	}
+}
