@@ -289,7 +289,7 @@ func numberWords(x *float64) string {
 	if x == nil {
 		return "none"
 	}
-	return strconv.FormatFloat(*x, 'g', 4, 64)
+	return strconv.FormatFloat(*x, 'g', 6, 64)
 }
 
 func changeWords(x *float64) string {
