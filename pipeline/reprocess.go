@@ -112,6 +112,12 @@ func (p *reprocessing) begin(ctx context.Context, store Store, opts Options) (s 
 		if s.id, err = tx.StartRun(ctx, "reprocess", opts.Program, opts.Started); err != nil {
 			return err
 		}
+		newest, _, errNewest := tx.NewestEdition(ctx)
+		published, _, errPublished := tx.PublishedEdition(ctx)
+		if err := errors.Join(errNewest, errPublished); err != nil {
+			return err
+		}
+		p.done.Edition, p.done.Before, p.done.Published = newest.ID, published.ID, published.ID
 		unchanged, err := p.isUnchanged(ctx, tx)
 		if err != nil || unchanged {
 			return err
@@ -190,13 +196,13 @@ func (p *reprocessing) put(ctx context.Context) (newest db.Edition, err error) {
 		if p.done.IsRead {
 			err = errors.Join(tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
 		}
-		var errNewest, errPublished error
-		var published db.Edition
+		var errNewest error
 		newest, _, errNewest = tx.NewestEdition(ctx)
-		published, _, errPublished = tx.PublishedEdition(ctx)
-		p.done.Edition, p.done.Before, p.done.Published = newest.ID, published.ID, published.ID
-		return errors.Join(err, errNewest, errPublished)
+		return errors.Join(err, errNewest)
 	})
+	if err == nil {
+		p.done.Edition = newest.ID
+	}
 	return newest, err
 }
 

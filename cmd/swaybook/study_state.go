@@ -185,6 +185,7 @@ func (r *studyRun) printOutputs(p *printer) {
 func (r *studyRun) printEnd(p *printer) {
 	s := &r.state
 	switch {
+	case s.Run == nil: // nobody looked
 	case s.Published == nil:
 		p.printf("Nothing is published.\n")
 	case isOther(s.Published, s.Before) && s.Before == nil:
