@@ -40,7 +40,7 @@ func (g Generation) CheckSolver(version string) error {
 	if g.Solver == version {
 		return nil
 	}
-	return fmt.Errorf("%w: its spectra come from solver %q, this program has %q; ingest the files into a new store with --store",
+	return fmt.Errorf("%w: its spectra come from solver %q, this program has %q; reprocess, or ingest --recipe, computes them anew of the stored samples",
 		ErrOtherGeneration, g.Solver, version)
 }
 

@@ -97,7 +97,7 @@ const firstEditions = 12
 // checkUsable refuses a store that this program could not use once it is brought
 // up to date: the program that made it still can.
 func checkUsable(ctx context.Context, tx *sql.Tx, applied int, solver string) error {
-	if applied == 0 {
+	if applied == 0 || solver == AnySolver {
 		return nil
 	}
 	var g Generation

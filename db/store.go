@@ -40,7 +40,7 @@ type Store struct {
 
 // Create opens the store at path for reading and writing, makes it where there
 // is none, and applies the migrations that it lacks; but nothing to a store that
-// another version of the solver computed, which the error says.
+// another version of the solver computed, which the error says, unless AnySolver is given.
 func Create(ctx context.Context, path, solver string) (*Store, error) {
 	s, err := openWriter(ctx, path, solver)
 	if err != nil {
@@ -48,6 +48,9 @@ func Create(ctx context.Context, path, solver string) (*Store, error) {
 	}
 	return s, nil
 }
+
+// AnySolver is for who computes anew what another version of the solver computed.
+const AnySolver = ""
 
 // MustExist returns an error that wraps ErrNoStore where there is no store at the path.
 func MustExist(path string) error {

@@ -11,9 +11,8 @@ import (
 
 // settleGeneration returns the generation of the run: that of the store's grid and of
 // the recipe asked for, or of the published one where none is. A first run makes it on
-// the grid asked for. A later run that asks for another grid is refused, and so is a
-// store that another version of the solver computed: its spectra would not be comparable
-// with new ones.
+// the grid asked for. A later run that asks for another grid is refused. What another
+// version of the solver computed is another generation, as what another recipe did.
 func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid, recipe *condition.Recipe) (db.Generation, error) {
 	g, ok, err := tx.Current(ctx)
 	if err != nil {
@@ -30,18 +29,16 @@ func settleGeneration(ctx context.Context, tx *db.Tx, asked db.Grid, recipe *con
 		}
 		return tx.PutGeneration(ctx, storedRecipe(recipe), grid, spectrum.Version)
 	}
-	if err := g.CheckSolver(spectrum.Version); err != nil {
-		return g, err
-	}
 	if !filled(asked, g.Grid).Equal(g.Grid) {
 		return g, fmt.Errorf("%w: the store's grid was fixed by its first ingest at %s; leave out --periods and --dampings, "+
 			"query other periods and dampings (they are computed from the stored samples), or make another store with --store",
 			db.ErrOtherGeneration, describe(g.Grid))
 	}
-	if recipe == nil {
-		return g, nil
+	stored := g.Recipe
+	if recipe != nil {
+		stored = storedRecipe(recipe)
 	}
-	return tx.PutGeneration(ctx, storedRecipe(recipe), g.Grid, spectrum.Version)
+	return tx.PutGeneration(ctx, stored, g.Grid, spectrum.Version)
 }
 
 // regenerate returns the generation of a study's run: of the recipe and grid asked for or,

@@ -302,8 +302,13 @@ func TestTheGridIsFixedByTheFirstRun(t *testing.T) {
 	if _, err := client(t, store).ExecContext(t.Context(), `UPDATE generation SET solver = 'older'`); err != nil {
 		t.Fatal(err)
 	}
-	if _, err := Run(t.Context(), store, opts); !errors.Is(err, db.ErrOtherGeneration) || !strings.Contains(err.Error(), `solver "older"`) {
-		t.Errorf("another solver: %v", err)
+	held := len(componentsOf(t, store))
+	if s := run(t, store, opts); s.Stored != 0 || s.Recomputed != held || s.Rotated != 1 {
+		t.Errorf("another solver: %+v, want %d components computed anew", s, held)
+	}
+	err := store.View(t.Context(), func(v *db.Snapshot) error { return v.Generation.CheckSolver(SolverVersion) })
+	if err != nil {
+		t.Errorf("after another solver: %v", err)
 	}
 	opts.Grid.Dampings = []float64{-1}
 	opts.Grid.PeriodsS = []float64{1}

@@ -183,7 +183,7 @@ func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
 		return err
 	}
 	defer func() { err = errors.Join(err, lock.Release()) }()
-	store, err := db.Create(ctx, o.store, pipeline.SolverVersion)
+	store, err := db.Create(ctx, o.store, db.AnySolver)
 	if err != nil {
 		return err
 	}

@@ -65,7 +65,7 @@ func (r *studyRun) write(w io.Writer) error {
 
 // run makes the store that of the study's files, and writes what it asks for.
 func (r *studyRun) run(ctx context.Context) (err error) {
-	if r.store, err = db.Create(ctx, r.plan.study.Store.Value, pipeline.SolverVersion); err != nil {
+	if r.store, err = db.Create(ctx, r.plan.study.Store.Value, db.AnySolver); err != nil {
 		return err
 	}
 	defer func() { err = errors.Join(err, r.store.Close()) }()
