@@ -120,12 +120,7 @@ func leaveFile(what, path string, fill func(io.Writer) error) error {
 	if path == "" {
 		return nil
 	}
-	var set beside.Set
-	err := set.Write(path, fill)
-	if err == nil {
-		err = set.Swap()
-	}
-	if err = errors.Join(err, set.Close()); err != nil {
+	if err := beside.WriteFile(path, fill); err != nil {
 		return fmt.Errorf("%s: %w", what, err)
 	}
 	return nil

@@ -32,6 +32,16 @@ func (f *file) beside(what string) string {
 func (f *file) part() string   { return f.beside("part") }
 func (f *file) before() string { return f.beside("before") }
 
+// WriteFile writes one file whole, or leaves it as it is.
+func WriteFile(path string, fill func(io.Writer) error) error {
+	var s Set
+	err := s.Write(path, fill)
+	if err == nil {
+		err = s.Swap()
+	}
+	return errors.Join(err, s.Close())
+}
+
 // Write has fill write what a file shall hold, and waits until it is on the disk. Folders
 // that are missing are made. The mode of a file that is there stays.
 func (s *Set) Write(path string, fill func(io.Writer) error) error {
