@@ -1,0 +1,49 @@
+package chart
+
+import (
+	"image/color"
+
+	"gonum.org/v1/plot/vg"
+	"gonum.org/v1/plot/vg/draw"
+)
+
+// Colours of our own, dark enough on white for thin lines and apart for colour-blind eyes
+// (TestColoursAreApart); lines differ in their dashes too, for print in grey.
+var (
+	ink     = color.NRGBA{0x1e, 0x24, 0x2c, 0xff} // text, axes
+	paper   = color.NRGBA{0xff, 0xff, 0xff, 0xd8} // behind words that lie on curves
+	quiet   = color.NRGBA{0x5a, 0x63, 0x70, 0xff} // notes
+	rule    = color.NRGBA{0xe2, 0xe5, 0xe9, 0xff} // lines of the grid
+	faint   = color.NRGBA{0xc3, 0xc9, 0xd1, 0xff} // single spectra
+	shade   = color.NRGBA{0xd6, 0xe4, 0xf0, 0xff} // counts
+	veil    = color.NRGBA{0x0a, 0x47, 0x7e, 0x30} // between percentiles, over single spectra
+	deep    = color.NRGBA{0x0a, 0x47, 0x7e, 0xff} // percentiles
+	warm    = color.NRGBA{0xc2, 0x57, 0x0c, 0xff} // mean
+	plum    = color.NRGBA{0x96, 0x3c, 0xd8, 0xff} // envelope
+	mark    = color.NRGBA{0x9b, 0x1c, 0x31, 0xff} // structure
+	designs = color.NRGBA{0x00, 0x00, 0x00, 0xff} // design spectrum
+)
+
+// Kind says what a curve is, by which it is drawn.
+type Kind int
+
+// The kinds of curves.
+const (
+	Median Kind = iota
+	Percentile
+	Mean
+	Envelope
+	Design
+)
+
+// styles are the lines of the kinds.
+var styles = map[Kind]draw.LineStyle{
+	Median:     {Color: deep, Width: 1.8},
+	Percentile: {Color: deep, Width: 0.8},
+	Mean:       {Color: warm, Width: 1.4, Dashes: []vg.Length{7, 2.5}},
+	Envelope:   {Color: plum, Width: 1, Dashes: []vg.Length{1.2, 2}},
+	Design:     {Color: designs, Width: 1.6, Dashes: []vg.Length{9, 2.5, 2, 2.5}},
+}
+
+// hair is the width of single spectra.
+const hair vg.Length = 0.5

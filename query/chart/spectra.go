@@ -1,0 +1,214 @@
+package chart
+
+import (
+	"errors"
+	"math"
+	"slices"
+	"strconv"
+
+	"gonum.org/v1/plot/vg"
+	"gonum.org/v1/plot/vg/draw"
+)
+
+// Spectra is a chart of many spectra and their statistics against period, above a strip
+// that says how many hold up the statistics.
+type Spectra struct {
+	Title    string
+	Notes    []string // lines below the title
+	Foot     string   // below the chart
+	Quantity string   // of the ordinates, with its unit
+	PeriodsS []float64
+	IsLinear bool // both axes; else both are logarithmic
+	// Each has a value a period, NaN where a spectrum does not count.
+	Each   [][]float64
+	Band   Region
+	Curves []Curve
+	Marks  []Mark
+	Counts []int // a period
+}
+
+// Region lies between two curves, of a value a period; nil for none.
+type Region struct{ Low, High []float64 }
+
+// Curve has a value a period, NaN for none.
+type Curve struct {
+	Name   string
+	Kind   Kind
+	Values []float64
+}
+
+// Mark is a period or, where ToS is greater, a band of them.
+type Mark struct {
+	Name       string
+	FromS, ToS float64
+}
+
+// The room of the parts of the chart.
+const (
+	rightRoom vg.Length = 92 // of the curves' names
+	lineRoom  vg.Length = 10
+	stripRoom vg.Length = 34
+	footRoom  vg.Length = 14
+)
+
+// errNothing says that there is nothing to draw.
+var errNothing = errors.New("no spectrum to draw: all values are missing or zero")
+
+// Draw draws the chart.
+func (s *Spectra) Draw(c draw.Canvas) error {
+	lowest, highest := s.extent()
+	if len(s.PeriodsS) == 0 || !(highest > 0) {
+		return errNothing
+	}
+	top := s.heading(c)
+	f := frame{
+		x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], !s.IsLinear),
+		y: newAxis(s.Quantity, lowest, highest, !s.IsLinear),
+	}
+	bottom := footRoom + bottomRoom
+	strip := f
+	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+8, -top)
+	f.grid()
+	s.drawEach(&f)
+	s.drawCurves(&f)
+	s.drawMarks(&f)
+	f.axes(false)
+	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
+	strip.Max.Y = strip.Min.Y + stripRoom
+	s.drawCounts(&strip)
+	c.FillText(writing(noteSize, quiet), vg.Point{X: c.Min.X + leftRoom, Y: c.Min.Y + footRoom/2}, shorten(writing(noteSize, quiet), s.Foot, c.Size().X-leftRoom-4))
+	return nil
+}
+
+// heading writes the title and notes and returns the room that they take.
+func (s *Spectra) heading(c draw.Canvas) vg.Length {
+	at := vg.Point{X: c.Min.X + leftRoom, Y: c.Max.Y - 11}
+	width := c.Size().X - leftRoom - 6
+	c.FillText(bold(titleSize, ink), at, shorten(bold(titleSize, ink), s.Title, width))
+	at.Y -= 13
+	for _, note := range s.Notes {
+		c.FillText(writing(labelSize, quiet), at, shorten(writing(labelSize, quiet), note, width))
+		at.Y -= lineRoom
+	}
+	return c.Max.Y - at.Y
+}
+
+// extent is the least positive and the greatest value of all that is drawn. Of single
+// spectra, a logarithmic axis shows down to a thousandth of the greatest.
+func (s *Spectra) extent() (lowest, highest float64) {
+	lowest = math.Inf(1)
+	take := func(values []float64) {
+		for i, v := range values {
+			if v > 0 && !math.IsInf(v, 0) && i < len(s.PeriodsS) {
+				lowest, highest = min(lowest, v), max(highest, v)
+			}
+		}
+	}
+	for _, curve := range s.Curves {
+		take(curve.Values)
+	}
+	curves := lowest
+	for _, values := range s.Each {
+		take(values)
+	}
+	return max(lowest, min(curves, highest/1000)), highest
+}
+
+// tolerance is how far a line may lie from its spectrum: half a dot at 300 dots an inch.
+const tolerance vg.Length = 0.12
+
+// strokePoints is of how many points a stroke of single spectra is at least: each is an
+// element of SVG, and long ones take long to fill.
+const strokePoints = 300
+
+// drawEach draws the single spectra, of which only that is drawn which can be seen, and lays
+// the band over them.
+func (s *Spectra) drawEach(f *frame) {
+	c := newCover(f.Rectangle, hair)
+	f.SetLineStyle(draw.LineStyle{Color: faint, Width: hair})
+	var path vg.Path
+	for _, values := range s.Each {
+		for _, piece := range f.lines(s.PeriodsS, values) {
+			for _, line := range f.ClipLinesXY(simplify(piece, tolerance)) {
+				for _, seen := range c.add(line) {
+					appendLine(&path, seen)
+				}
+			}
+		}
+		if len(path) > strokePoints {
+			f.Stroke(path)
+			path = nil
+		}
+	}
+	if path != nil {
+		f.Stroke(path)
+	}
+	if s.Band.Low != nil {
+		f.region(veil, s.PeriodsS, s.Band.Low, s.Band.High)
+	}
+}
+
+func appendLine(path *vg.Path, line []vg.Point) {
+	path.Move(line[0])
+	for _, p := range line[1:] {
+		path.Line(p)
+	}
+}
+
+// drawCurves draws the curves, and their names where they end.
+func (s *Spectra) drawCurves(f *frame) {
+	var names []label
+	for _, curve := range s.Curves {
+		f.curve(styles[curve.Kind], s.PeriodsS, curve.Values)
+		if at := f.end(s.PeriodsS, curve.Values); at >= 0 {
+			names = append(names, label{words: curve.Name, style: styles[curve.Kind], from: f.point(s.PeriodsS[at], curve.Values[at])})
+		}
+	}
+	drawLabels(f, names)
+}
+
+// end is the position of a curve's last value within the frame, -1 for none.
+func (f *frame) end(xs, ys []float64) int {
+	for i := len(xs) - 1; i >= 0; i-- {
+		if f.x.has(xs[i]) && f.isShown(ys[i]) && f.y.has(ys[i]) {
+			return i
+		}
+	}
+	return -1
+}
+
+// drawMarks marks periods, with their names along the line.
+func (s *Spectra) drawMarks(f *frame) {
+	line := draw.LineStyle{Color: mark, Width: 0.9}
+	for _, m := range s.Marks {
+		from, to := max(m.FromS, f.x.from), min(max(m.FromS, m.ToS), f.x.to)
+		if !f.x.has(from) || !f.x.has(to) {
+			continue
+		}
+		for _, t := range slices.Compact([]float64{from, to}) {
+			x := f.point(t, f.y.from).X
+			f.StrokeLine2(line, x, f.Min.Y, x, f.Max.Y)
+		}
+		style := upwards(writing(labelSize, mark))
+		style.XAlign = draw.XRight
+		at := vg.Point{X: f.point(from, f.y.from).X - 6, Y: f.Max.Y - 3}
+		half, length := vg.Length(labelSize)*0.6, style.Width(m.Name)
+		f.FillPolygon(paper, []vg.Point{{X: at.X - half, Y: at.Y}, {X: at.X + half, Y: at.Y}, {X: at.X + half, Y: at.Y - length}, {X: at.X - half, Y: at.Y - length}})
+		f.FillText(style, at, m.Name)
+	}
+}
+
+// drawCounts draws how many spectra count at each period.
+func (s *Spectra) drawCounts(f *frame) {
+	most := 1
+	values := make([]float64, len(s.Counts))
+	for i, n := range s.Counts {
+		most, values[i] = max(most, n), float64(n)
+	}
+	f.y = axis{to: float64(most), label: "count", ticks: []tick{{0, "0", true}, {float64(most), strconv.Itoa(most), true}}}
+	zero := make([]float64, len(values))
+	f.grid()
+	f.region(shade, s.PeriodsS, zero, values)
+	f.curve(draw.LineStyle{Color: deep, Width: 0.8}, s.PeriodsS, values)
+	f.axes(true)
+}
