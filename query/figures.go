@@ -29,8 +29,9 @@ func figuresOf(out []Figure, of string, percents []float64, r *Reduction) []Figu
 
 // Figures are those of all periods.
 func (a *SpectrumAnswer) Figures() (out []Figure) {
+	_, unit, _ := a.Measure.unitOf(UnitsSI)
 	for i := range a.Reductions {
-		out = figuresOf(out, fmt.Sprintf("%s at %g s", a.Measure.column(), a.PeriodsS[i]), a.Percentiles, &a.Reductions[i])
+		out = figuresOf(out, fmt.Sprintf("%s_%s at %g s", a.Measure, unit, a.PeriodsS[i]), a.Percentiles, &a.Reductions[i])
 	}
 	return out
 }

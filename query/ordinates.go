@@ -82,19 +82,6 @@ func (m Measure) validate() error {
 // isRatio reports whether the measure is a ratio of spectra.
 func (m Measure) isRatio() bool { return m == MeasureVH || m == MeasureEta }
 
-// column is the measure with its unit, as in names of columns.
-func (m Measure) column() string {
-	switch m {
-	case MeasureSD:
-		return "sd_m"
-	case MeasurePSV:
-		return "psv_m_s"
-	case MeasurePSA:
-		return "psa_g"
-	}
-	return string(m)
-}
-
 // omega is 2π/T, the number that the store keeps beside each period.
 func omega(periodS float64) float64 { return 2 * math.Pi / periodS }
 

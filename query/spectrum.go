@@ -24,6 +24,7 @@ type SpectrumQuestion struct {
 	Band        Band      // grid periods taken; not with PeriodsS
 	PeriodsS    []float64 // nil: those of the grid in Band
 	Method      Method    // anything but the default is computed from samples
+	Each        bool      // the answer has the spectra themselves too
 }
 
 // SpectrumAnswer is the statistics at every period, in SI: SD in m, PSV in m/s,
@@ -38,6 +39,7 @@ type SpectrumAnswer struct {
 	By          Grouping
 	Extras      Extras
 	Groups      []SpectrumGroup // nil where none were asked for
+	Each        [][]float64     // of every motion a value a period, NaN outside its usable band; nil where not asked for
 }
 
 // SpectrumGroup is the statistics of one part of the selection.
@@ -157,6 +159,9 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		Selection: picked.report, Damping: q.Damping, Measure: q.Measure, Percentiles: q.Percentiles,
 		PeriodsS: periods, By: q.By, Extras: q.Extras,
 	}
+	if q.Each {
+		answer.Each = q.each(loaded)
+	}
 	whole := picked.sample(q.Extras)
 	if answer.Reductions, err = q.reduceAll(ctx, loaded, whole); err != nil {
 		return nil, err
@@ -169,6 +174,21 @@ func (q SpectrumQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*S
 		answer.Groups = append(answer.Groups, SpectrumGroup{g, reductions})
 	}
 	return answer, nil
+}
+
+// each turns ordinates into spectra.
+func (q SpectrumQuestion) each(o *ordinates) [][]float64 {
+	out := make([][]float64, o.motions)
+	for i := range out {
+		out[i] = make([]float64, len(o.oscillators))
+	}
+	for p := range o.oscillators {
+		omega := omega(o.oscillators[p].PeriodS)
+		for i, sd := range o.at(p) {
+			out[i][p] = q.Measure.of(sd, omega)
+		}
+	}
+	return out
 }
 
 func (q SpectrumQuestion) periods(snapshot *db.Snapshot) ([]float64, error) {

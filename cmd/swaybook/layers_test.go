@@ -14,20 +14,20 @@ import (
 // layers says what a package may import of ours, and why. A package that is
 // not listed may import nothing of ours; tests are free.
 var layers = map[string][]string{
-	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "pipeline/beside", "db", "query"},                                                                   // wiring, no arithmetic and no SQL
+	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "pipeline/beside", "db", "query", "query/chart"},                                                    // wiring, no arithmetic and no SQL
 	"ingest":             {"ingest/miniseed", "ingest/fdsnxml", "ingest/archive", "ingest/tomlfile"},                                                                                                          // what one reader needs
 	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition", "pipeline/signal", "pipeline/intensity", "pipeline/quality"}, // the way in
 	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                                                                             // invents files, knows nothing of readers
 	"db":                 {"migrations"},                                                                                                                                                                      // the only SQL
 	"pipeline/condition": {"pipeline/signal"},                                                                                                                                                                 // the steps of recipes
 	"pipeline/beside":    {},
-	"pipeline/study":     {"ingest/tomlfile"},                                                                                                                                      // lines of keys
-	"pipeline/intensity": {"pipeline/signal"},                                                                                                                                      // Fourier amplitudes
-	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                      // means and integrals
-	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                             // the loops behind the solver
-	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"}, // the way out; never pipeline itself
-	"query/design":       {"query/stats", "ingest/tomlfile"},                                                                                                                       // logarithms of the same bits everywhere; lines of keys
-	"query/mixed":        {"query/stats"},                                                                                                                                          // logarithms that are the same everywhere
+	"pipeline/study":     {"ingest/tomlfile"},                                                                                                                                                     // lines of keys
+	"pipeline/intensity": {"pipeline/signal"},                                                                                                                                                     // Fourier amplitudes
+	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                                     // means and integrals
+	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                                            // the loops behind the solver
+	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "query/chart", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"}, // the way out; never pipeline itself
+	"query/design":       {"query/stats", "ingest/tomlfile"},                                                                                                                                      // logarithms of the same bits everywhere; lines of keys
+	"query/mixed":        {"query/stats"},                                                                                                                                                         // logarithms that are the same everywhere
 }
 
 // sqlImports are for db alone.

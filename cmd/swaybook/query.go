@@ -102,6 +102,9 @@ func querySpectrumCommand() *cli.Command {
 			&cli.StringFlag{Name: "periods", Usage: "periods to show instead of the grid's, a `LIST` in s; computed from the samples where off the grid"},
 			asOfFlag(),
 			formatFlag("table, csv or json"),
+			plotFlag(),
+			axesFlag(),
+			&cli.StringFlag{Name: "mark", Usage: "periods of structures to mark in the figure, a `LIST` of 0.8s, or bands 0.7:0.9"},
 		),
 		Action: func(c *cli.Context) error {
 			o, err := newSpectrumOptions(c)
@@ -119,6 +122,7 @@ type spectrumOptions struct {
 	question query.SpectrumQuestion
 	format   query.Format
 	units    query.Units
+	plot     plotOptions
 }
 
 func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
@@ -135,6 +139,7 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 		parseInto(&q.PeriodsS, c, "periods", query.ParsePeriods),
 		parseInto(&o.units, c, "units", query.ParseUnits),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
+		newPlotOptions(&o.plot, c),
 	)
 }
 
@@ -184,9 +189,15 @@ func writeAnswer(answer statistics, format query.Format, units query.Units, w, s
 }
 
 func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, stderr io.Writer) error {
+	o.question.Each = o.plot.file != ""
 	answer, err := o.question.Ask(ctx, store)
 	if err != nil {
 		return err
+	}
+	if o.plot.file != "" {
+		if err := o.plot.write(answer.Chart(o.units, o.plot.marks, o.plot.isLinear)); err != nil {
+			return err
+		}
 	}
 	return writeAnswer(answer, o.format, o.units, w, stderr)
 }

@@ -25,6 +25,10 @@ var (
 	listKeys = []string{"near", "siting", "periods", "dampings", "percentiles", "show"}
 )
 
+// noKeys are the flags of questions that a study may not set: it has its own way to say
+// where answers go, and asks for what is published. Figures are not among them yet.
+var noKeys = []string{"format", asOf, "plot", "axes", "mark"}
+
 // productCommands are the commands whose questions a study may ask.
 var productCommands = map[study.Kind]func() *cli.Command{
 	study.Spectrum: querySpectrumCommand,
@@ -49,7 +53,7 @@ func studyVocabulary() study.Vocabulary {
 	}
 	for kind, command := range productCommands {
 		for _, f := range command().Flags {
-			if name := f.Names()[0]; name != "format" && name != asOf {
+			if !slices.Contains(noKeys, f.Names()[0]) {
 				v.Products[kind] = append(v.Products[kind], studyFlag(f))
 			}
 		}

@@ -1,0 +1,107 @@
+package query
+
+import (
+	"cmp"
+	"fmt"
+	"slices"
+	"strings"
+
+	"swaybook/query/chart"
+)
+
+// Chart is the answer as a chart of all spectra with their statistics: it needs Each.
+func (a *SpectrumAnswer) Chart(units Units, marks []chart.Mark, isLinear bool) *chart.Spectra {
+	unit, _, per := a.Measure.unitOf(units)
+	quantity := fmt.Sprintf("%s (%s)", strings.ToUpper(string(a.Measure)), unit)
+	if a.Measure.isRatio() {
+		quantity = a.Measure.title()
+	}
+	c := &chart.Spectra{
+		Title: fmt.Sprintf("%s, damping %s", a.Measure.title(), percentText(a.Damping)),
+		Notes: []string{a.Selection.heading(), strings.TrimSpace(a.Selection.methodLine())},
+		Foot:  Caution, Quantity: quantity, PeriodsS: a.PeriodsS, IsLinear: isLinear, Marks: marks,
+	}
+	for _, values := range a.Each {
+		c.Each = append(c.Each, scaled(values, per))
+	}
+	a.addCurves(c, per)
+	for i := range a.Reductions {
+		c.Counts = append(c.Counts, a.Reductions[i].Count)
+	}
+	return c
+}
+
+// addCurves adds the percentiles, with the band between the outer ones, the mean, the
+// envelope and the design spectrum.
+func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
+	add := func(name string, kind chart.Kind, of func(r *Reduction) float64) []float64 {
+		values := make([]float64, len(a.Reductions))
+		for i := range values {
+			values[i] = of(&a.Reductions[i]) / per
+		}
+		c.Curves = append(c.Curves, chart.Curve{Name: name, Kind: kind, Values: values})
+		return values
+	}
+	var bands [][]float64
+	order := upTo(len(a.Percentiles))
+	slices.SortFunc(order, func(i, j int) int { return cmp.Compare(a.Percentiles[i], a.Percentiles[j]) })
+	for _, i := range order {
+		name, kind := percentKey(a.Percentiles[i])+" %", chart.Percentile
+		if a.Percentiles[i] == 50 {
+			name, kind = "median", chart.Median
+		}
+		bands = append(bands, add(name, kind, func(r *Reduction) float64 { return r.Percentiles[i] }))
+	}
+	if last := len(bands) - 1; last > 0 {
+		c.Band = chart.Region{Low: bands[0], High: bands[last]}
+	}
+	add("mean", chart.Mean, func(r *Reduction) float64 { return r.Mean })
+	add("greatest", chart.Envelope, func(r *Reduction) float64 { return r.Max })
+	add("least", chart.Envelope, func(r *Reduction) float64 { return r.Min })
+	if a.Extras.Design == nil {
+		return
+	}
+	values := make([]float64, len(a.PeriodsS))
+	for i, t := range a.PeriodsS {
+		values[i] = a.Measure.of(designSD(a.Extras.Design, t, a.Damping), omega(t)) / per
+	}
+	c.Curves = append(c.Curves, chart.Curve{Name: "design", Kind: chart.Design, Values: values})
+}
+
+// scaled are values in another unit, of which one is so much.
+func scaled(values []float64, per float64) []float64 {
+	out := make([]float64, len(values))
+	for i, v := range values {
+		out[i] = v / per
+	}
+	return out
+}
+
+// ParseMarks reads periods to be marked on a chart, "0.8", "0.8s" or bands "0.7:0.9", with
+// commas between them.
+func ParseMarks(text string) ([]chart.Mark, error) {
+	if strings.TrimSpace(text) == "" {
+		return nil, nil
+	}
+	var out []chart.Mark
+	for word := range strings.SplitSeq(text, ",") {
+		m, err := parseMark(word)
+		if err != nil {
+			return nil, err
+		}
+		out = append(out, m)
+	}
+	return out, nil
+}
+
+func parseMark(text string) (m chart.Mark, err error) {
+	if strings.Contains(text, ":") {
+		b, err := ParseBand(text)
+		if err == nil && (b.FromS == 0 || b.ToS == 0) {
+			err = usage("mark", "%q is open; give both ends", text)
+		}
+		return chart.Mark{Name: fmt.Sprintf("T = %g to %g s", b.FromS, b.ToS), FromS: b.FromS, ToS: b.ToS}, err
+	}
+	t, err := parseSeconds(text)
+	return chart.Mark{Name: fmt.Sprintf("T = %g s", t), FromS: t, ToS: t}, err
+}
