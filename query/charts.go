@@ -3,6 +3,7 @@ package query
 import (
 	"cmp"
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 
@@ -66,6 +67,46 @@ func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
 		values[i] = a.Measure.of(designSD(a.Extras.Design, t, a.Damping), omega(t)) / per
 	}
 	c.Curves = append(c.Curves, chart.Curve{Name: "design", Kind: chart.Design, Values: values})
+}
+
+// FourWay is the answer as a four-way chart, with what is read at the marks on the median or,
+// where few motions support none, on the mean. It needs Each, and MeasurePSV.
+func (a *SpectrumAnswer) FourWay(units Units, marks []chart.Mark) *chart.FourWay {
+	sd, _, sdInM := MeasureSD.unitOf(units)
+	psv, _, psvInMPS := MeasurePSV.unitOf(units)
+	flat := a.Chart(UnitsSI, nil, false)
+	c := &chart.FourWay{
+		Title: "Four-way spectrum, damping " + percentText(a.Damping), Notes: flat.Notes, Foot: flat.Foot, PeriodsS: a.PeriodsS,
+		Units: chart.FourWayUnits{SD: sd, PSV: psv, SDInM: sdInM, PSVInMPS: psvInMPS}, Each: flat.Each, Curves: flat.Curves,
+	}
+	for _, m := range marks {
+		for _, kind := range []chart.Kind{chart.Median, chart.Mean} {
+			i := slices.IndexFunc(flat.Curves, func(curve chart.Curve) bool { return curve.Kind == kind })
+			if i < 0 {
+				continue
+			}
+			if v := readAt(a.PeriodsS, flat.Curves[i].Values, m.FromS); isDefined(v) {
+				c.Readings = append(c.Readings, chart.Reading{Name: m.Name + ", " + flat.Curves[i].Name, PeriodS: m.FromS, PSV: v})
+				break
+			}
+		}
+	}
+	return c
+}
+
+// readAt reads a curve at a period, between its points along a straight line on logarithmic
+// axes, as it is drawn; NaN outside.
+func readAt(periodsS, values []float64, at float64) float64 {
+	for i := range periodsS {
+		if periodsS[i] == at {
+			return values[i]
+		}
+		if i > 0 && periodsS[i-1] < at && at < periodsS[i] {
+			share := math.Log(at/periodsS[i-1]) / math.Log(periodsS[i]/periodsS[i-1])
+			return values[i-1] * math.Pow(values[i]/values[i-1], share)
+		}
+	}
+	return math.NaN()
 }
 
 // scaled are values in another unit, of which one is so much.

@@ -1,9 +1,11 @@
 package main
 
 import (
+	"cmp"
 	"io"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 
 	"github.com/urfave/cli/v2"
@@ -18,15 +20,24 @@ func plotFlag() cli.Flag {
 }
 
 func axesFlag() cli.Flag {
-	return &cli.StringFlag{Name: "axes", DefaultText: "log", Usage: "of the figure: log or linear"}
+	return &cli.StringFlag{Name: "axes", DefaultText: "log", Usage: "of the figure: log, linear, or four-way (PSV, with diagonals of SD and PSA)"}
 }
+
+// The axes of figures.
+const (
+	axesLog     = "log"
+	axesLinear  = "linear"
+	axesFourWay = "four-way"
+)
+
+var allAxes = []string{axesLog, axesLinear, axesFourWay}
 
 // plotOptions say what figure is drawn.
 type plotOptions struct {
-	file     string // "" for none
-	format   chart.Format
-	isLinear bool
-	marks    []chart.Mark
+	file   string // "" for none
+	format chart.Format
+	axes   string // axesLog where not said
+	marks  []chart.Mark
 }
 
 // newPlotOptions reads the flags of a figure.
@@ -46,17 +57,28 @@ func newPlotOptions(o *plotOptions, c *cli.Context) error {
 	if info, err := os.Stat(o.file); err == nil && !info.Mode().IsRegular() {
 		return ofFlag("plot", usagef("--plot %s: what is there is no file", o.file))
 	}
-	switch axes := c.String("axes"); axes {
-	case "", "log":
-	case "linear":
-		o.isLinear = true
-	default:
-		return ofFlag("axes", usagef("--axes %q: want log or linear", axes))
+	if o.axes = cmp.Or(c.String("axes"), axesLog); !slices.Contains(allAxes, o.axes) {
+		return ofFlag("axes", usagef("--axes %q: want %s", o.axes, strings.Join(allAxes, ", ")))
+	}
+	if o.axes == axesFourWay && c.IsSet("measure") && c.String("measure") != string(query.MeasurePSV) {
+		return ofFlag("axes", usagef("--axes four-way is of PSV, which tells SD and PSA too; leave out --measure"))
 	}
 	return parseInto(&o.marks, c, "mark", query.ParseMarks)
 }
 
+// of is the chart of an answer.
+func (o *plotOptions) of(a *query.SpectrumAnswer, units query.Units) chart.Chart {
+	if o.axes == axesFourWay {
+		return a.FourWay(units, o.marks)
+	}
+	return a.Chart(units, o.marks, o.axes == axesLinear)
+}
+
 // write draws a chart; the file is there whole, or as it was.
 func (o *plotOptions) write(drawn chart.Chart) error {
-	return beside.WriteFile(o.file, func(w io.Writer) error { return chart.Write(w, o.format, chart.Half, drawn) })
+	size := chart.Half
+	if o.axes == axesFourWay {
+		size = chart.Square
+	}
+	return beside.WriteFile(o.file, func(w io.Writer) error { return chart.Write(w, o.format, size, drawn) })
 }

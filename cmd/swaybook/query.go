@@ -190,12 +190,15 @@ func writeAnswer(answer statistics, format query.Format, units query.Units, w, s
 
 func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, stderr io.Writer) error {
 	o.question.Each = o.plot.file != ""
+	if o.plot.axes == axesFourWay {
+		o.question.Measure = query.MeasurePSV
+	}
 	answer, err := o.question.Ask(ctx, store)
 	if err != nil {
 		return err
 	}
 	if o.plot.file != "" {
-		if err := o.plot.write(answer.Chart(o.units, o.plot.marks, o.plot.isLinear)); err != nil {
+		if err := o.plot.write(o.plot.of(answer, o.units)); err != nil {
 			return err
 		}
 	}

@@ -76,8 +76,14 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
 	strip.Max.Y = strip.Min.Y + stripRoom
 	s.drawCounts(&strip)
-	c.FillText(writing(noteSize, quiet), vg.Point{X: c.Min.X + leftRoom, Y: c.Min.Y + footRoom/2}, shorten(writing(noteSize, quiet), s.Foot, c.Size().X-leftRoom-4))
+	s.foot(c)
 	return nil
+}
+
+// foot writes what stands below the chart.
+func (s *Spectra) foot(c draw.Canvas) {
+	style := writing(noteSize, quiet)
+	c.FillText(style, vg.Point{X: c.Min.X + leftRoom, Y: c.Min.Y + footRoom/2}, shorten(style, s.Foot, c.Size().X-leftRoom-4))
 }
 
 // heading writes the title and notes and returns the room that they take.

@@ -38,6 +38,9 @@ type Size struct{ Width, Height vg.Length }
 // Half is half an A4 page with margins of 2 cm, in landscape proportions.
 var Half = Size{17 * vg.Centimeter, 12 * vg.Centimeter}
 
+// Square is as wide, and as high.
+var Square = Size{17 * vg.Centimeter, 17 * vg.Centimeter}
+
 // dotsPerInch is the resolution of PNG: fine in print at half a page.
 const dotsPerInch = 200
 
