@@ -64,10 +64,12 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	for i := range diagonals {
 		diagonals[i].write(&f)
 	}
-	base.drawCurves(&f)
+	names := f
+	names.Min.Y += lineRoom * vg.Length(4*len(s.Readings))
+	base.drawCurves(&f, &names)
 	f.axes(true)
 	for i := range s.Readings {
-		s.read(&f, &s.Readings[i])
+		s.read(&f, &s.Readings[i], i)
 	}
 	base.foot(c)
 	return nil
@@ -192,8 +194,9 @@ func (f *frame) behind(at, along vg.Point, length vg.Length) {
 	f.FillPolygon(paper, []vg.Point{at.Add(half), end.Add(half), end.Sub(half), at.Sub(half)})
 }
 
-// read marks a point, with the lines on which its three values are read, and writes these.
-func (s *FourWay) read(f *frame, r *Reading) {
+// read marks a point, with the lines on which its three values are read, and writes these,
+// each reading above the one before.
+func (s *FourWay) read(f *frame, r *Reading, nth int) {
 	if !f.x.has(r.PeriodS) || !f.y.has(r.PSV) {
 		return
 	}
@@ -213,7 +216,7 @@ func (s *FourWay) read(f *frame, r *Reading) {
 		fmt.Sprintf("PSA %s g", three(psa))}
 	style := writing(labelSize, mark)
 	for i, w := range words {
-		f.FillText(style, vg.Point{X: f.Max.X + 8, Y: f.Min.Y + lineRoom*vg.Length(len(words)-i)}, shorten(style, w, rightRoom-10))
+		f.FillText(style, vg.Point{X: f.Max.X + 8, Y: f.Min.Y + lineRoom*vg.Length((nth+1)*len(words)-i)}, shorten(style, w, rightRoom-10))
 	}
 }
 

@@ -70,7 +70,7 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+8, -top)
 	f.grid()
 	s.drawEach(&f)
-	s.drawCurves(&f)
+	s.drawCurves(&f, &f)
 	s.drawMarks(&f)
 	f.axes(false)
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
@@ -161,8 +161,8 @@ func appendLine(path *vg.Path, line []vg.Point) {
 	}
 }
 
-// drawCurves draws the curves, and their names where they end.
-func (s *Spectra) drawCurves(f *frame) {
+// drawCurves draws the curves, and their names beside another frame, near where they end.
+func (s *Spectra) drawCurves(f, beside *frame) {
 	var names []label
 	for _, curve := range s.Curves {
 		f.curve(styles[curve.Kind], s.PeriodsS, curve.Values)
@@ -170,7 +170,7 @@ func (s *Spectra) drawCurves(f *frame) {
 			names = append(names, label{words: curve.Name, style: styles[curve.Kind], from: f.point(s.PeriodsS[at], curve.Values[at])})
 		}
 	}
-	drawLabels(f, names)
+	drawLabels(beside, names)
 }
 
 // end is the position of a curve's last value within the frame, -1 for none.
