@@ -80,6 +80,32 @@ func (s *Store) ChangesSince(ctx context.Context, before, run int64) (c *Changes
 	return c, err
 }
 
+// stationKey is what stations are known by.
+const stationKey = `ltrim(t.network || '.' || t.code, '.')`
+
+// StationCodes are the codes of stations, as Changes have them, by the codes of records that
+// any of the editions has.
+func (s *Store) StationCodes(ctx context.Context, runs ...int64) (map[string]string, error) {
+	out := map[string]string{}
+	for _, run := range runs {
+		err := s.ViewAsOf(ctx, run, func(v *Snapshot) error {
+			rows, err := v.tx.QueryContext(ctx, `SELECT r.code, `+stationKey+` FROM `+v.shown("record")+` r JOIN `+v.shown("station")+` t ON t.id = r.station_id`)
+			if err != nil {
+				return fmt.Errorf("read stations: %w", err)
+			}
+			found, err := collect(rows, func(v *[2]string) []any { return []any{&v[0], &v[1]} })
+			for _, one := range found {
+				out[one[0]] = one[1]
+			}
+			return err
+		})
+		if err != nil {
+			return nil, err
+		}
+	}
+	return out, nil
+}
+
 // changesSince compares the snapshot's edition with an earlier one, 0 for an empty one.
 func (s *Snapshot) changesSince(ctx context.Context, before int64) (*Changes, error) {
 	c := &Changes{}
@@ -91,7 +117,7 @@ func (s *Snapshot) changesSince(ctx context.Context, before int64) (*Changes, er
 		{&c.Records, comparison{table: "record", key: `t.code`, ignore: []string{"id", "event_id", "station_id"},
 			beside: []string{`event e ON e.id = t.event_id`, `station s ON s.id = t.station_id`}, says: []string{`e.code`, `s.network`, `s.code`}}},
 		{&c.Events, comparison{table: "event", key: `t.code`, ignore: []string{"id", "primary_id"}, beside: []string{`event e ON e.id = t.primary_id`}, says: []string{`e.code`}}},
-		{&c.Stations, comparison{table: "station", key: `ltrim(t.network || '.' || t.code, '.')`, ignore: []string{"id"}}},
+		{&c.Stations, comparison{table: "station", key: stationKey, ignore: []string{"id"}}},
 		{&c.Files, comparison{table: "source_file", key: `t.path`, ignore: []string{"id"}}},
 		{&c.Rejections, comparison{table: "rejection", key: `t.path || ':' || t.line || ': ' || t.cause`, ignore: []string{"id"}}},
 		// Which other components hold the motion is theirs to say, whether there is one counts.

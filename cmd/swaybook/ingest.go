@@ -124,9 +124,12 @@ func (o *ingestOptions) readRecipe(name string) error {
 	return err
 }
 
+// program names the program and its version in a store.
+func program() string { return "swaybook " + version }
+
 func pipelineOptions(store string, m *monitor) pipeline.Options {
 	return pipeline.Options{
-		Program: "swaybook " + version, Started: time.Now(), Clock: time.Now, Progress: m.file, Recomputed: m.component, Rotated: m.record, Doubted: m.doubt,
+		Program: program(), Started: time.Now(), Clock: time.Now, Progress: m.file, Recomputed: m.component, Rotated: m.record, Doubted: m.doubt,
 		Own: db.Files(store),
 	}
 }

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"crypto/rand"
 	"crypto/sha256"
 	"encoding/hex"
 	"fmt"
@@ -21,9 +22,13 @@ type digester struct {
 
 func (d *digester) add(words ...any) { fmt.Fprintf(&d.text, "%q\n", words) }
 
-func (d *digester) sum() (string, error) {
+// sum is the digest; of what could not be read, one that no other equals.
+func (d *digester) sum() string {
+	if d.err != nil {
+		d.add(d.err, rand.Text())
+	}
 	sum := sha256.Sum256([]byte(d.text.String()))
-	return hex.EncodeToString(sum[:]), d.err
+	return hex.EncodeToString(sum[:])
 }
 
 // settings adds flags, whose order does not matter but among those of one name.
@@ -73,30 +78,33 @@ func hashFile(name string) (string, error) {
 	return hex.EncodeToString(h.Sum(nil)), nil
 }
 
-// decided is the digest of all that decides, beside the files, how these are read. What
+// Digests are made before the files are read for what they say: what is written into one
+// between the two counts as new for the next run.
+
+// decidedBy is the digest of all that decides, beside the files, how these are read. What
 // they are computed by is not in it: nothing need be read anew for another recipe.
-func (p *studyPlan) decided() (string, error) {
+func decidedBy(s *study.Study) string {
 	d := &digester{}
-	d.add(p.ingest.pipeline.Program)
-	for _, source := range p.study.Sources {
+	d.add(program())
+	for _, source := range s.Sources {
 		d.add("source", source.Value)
 	}
-	for _, pattern := range p.study.Include {
+	for _, pattern := range s.Include {
 		d.add("include", pattern.Value)
 	}
-	for _, pattern := range p.study.Exclude {
+	for _, pattern := range s.Exclude {
 		d.add("exclude", pattern.Value)
 	}
-	d.settings(slices.DeleteFunc(slices.Clone(p.study.Ingest), func(s study.Setting) bool {
+	d.settings(slices.DeleteFunc(slices.Clone(s.Ingest), func(s study.Setting) bool {
 		return s.Key == "recipe" || s.Key == "periods" || s.Key == "dampings"
 	}))
 	return d.sum()
 }
 
-// asked is the digest of a product's question.
-func (p *product) asked(program string) (string, error) {
+// askedBy is the digest of a product's question.
+func askedBy(p *study.Product) string {
 	d := &digester{}
-	d.add(program, p.kind)
-	d.settings(p.settings)
+	d.add(program(), p.Kind)
+	d.settings(p.Settings)
 	return d.sum()
 }

@@ -60,7 +60,9 @@ type comparison struct {
 	outputs *outputs
 	bound   *float64
 	changes *db.Changes
-	report  *driftReport
+	// stations are the codes of stations as changes have them, by record, of both editions.
+	stations map[string]string
+	report   *driftReport
 }
 
 // compare asks all products as of the published edition too. Its answers are those to the
@@ -71,7 +73,11 @@ func (r *studyRun) compare(ctx context.Context, edition, published int64) error 
 		return err
 	}
 	r.state.Changes = newChangeReport(changes)
-	c := &comparison{outputs: r.outputs, bound: r.bound(), changes: changes, report: &driftReport{Edition: edition, Since: published, Bound: r.bound(), Products: []productDrift{}}}
+	stations, err := r.store.StationCodes(ctx, published, edition)
+	if err != nil {
+		return err
+	}
+	c := &comparison{outputs: r.outputs, bound: r.bound(), changes: changes, stations: stations, report: &driftReport{Edition: edition, Since: published, Bound: r.bound(), Products: []productDrift{}}}
 	r.state.Drift = c.report
 	if c.report.RecipeBefore, c.report.SolverBefore, err = madeBy(ctx, r.store, published); err != nil {
 		return err
@@ -118,7 +124,7 @@ func (c *comparison) product(ctx context.Context, p *product) error {
 			out.Largest = append(out.Largest, figureDrift{d.Of, d.Name, finite(d.Before), finite(d.After), finite(d.Ratio()), isBeyond})
 		}
 	}
-	out.Causes = causesOf(was.Motions(), is.Motions(), c.changes)
+	out.Causes = c.causes(was.Motions(), is.Motions())
 	c.report.Beyond += out.Beyond
 	if out.Changed > 0 || len(out.Causes) > 0 {
 		c.report.Products = append(c.report.Products, out)
@@ -153,27 +159,27 @@ func (p *productDrift) greatest() float64 {
 	return math.Inf(1)
 }
 
-// causesOf says what happened to the motions of a selection.
-func causesOf(before, after []query.Motion, c *db.Changes) []driftCause {
+// causes says what happened to the motions of a selection.
+func (c *comparison) causes(before, after []query.Motion) []driftCause {
 	was, is := motionsByCode(before), motionsByCode(after)
 	by := map[string][]string{}
 	for _, m := range after {
 		code := codeOf(m)
 		if _, both := was[code]; !both {
-			cause := joinedBy(m, c)
+			cause := c.joinedBy(m)
 			by[cause] = append(by[cause], code)
-		} else if isRecomputed(m, c) {
+		} else if c.isRecomputed(m) {
 			by[causeComputed] = append(by[causeComputed], code)
 		}
 	}
 	for _, m := range before {
 		if code := codeOf(m); is[code].Record == "" {
-			cause := leftBy(m, c)
+			cause := c.leftBy(m)
 			by[cause] = append(by[cause], code)
 		}
 	}
 	out := []driftCause{}
-	for _, cause := range causes {
+	for _, cause := range allCauses {
 		if codes := by[cause]; len(codes) > 0 {
 			out = append(out, driftCause{cause, newCodeReport(codes)})
 		}
@@ -192,7 +198,7 @@ const (
 	causeComputed  = "computed anew"
 )
 
-var causes = []string{causeAdded, causeRemoved, causeJoined, causeLeft, causeSelected, causeForgotten, causeComputed}
+var allCauses = []string{causeAdded, causeRemoved, causeJoined, causeLeft, causeSelected, causeForgotten, causeComputed}
 
 func codeOf(m query.Motion) string { return m.Record + " " + m.Role }
 
@@ -221,32 +227,36 @@ func components(m query.Motion) []string {
 	return out
 }
 
-func joinedBy(m query.Motion, c *db.Changes) string {
+func (c *comparison) joinedBy(m query.Motion) string {
 	switch {
-	case hasAny(c.Records.Added, m.Record), hasAny(c.Components.Added, components(m)...):
+	case hasAny(c.changes.Records.Added, m.Record), hasAny(c.changes.Components.Added, components(m)...):
 		return causeAdded
-	case isChanged(m, c):
+	case c.isChanged(m):
 		return causeJoined
 	}
 	return causeSelected
 }
 
-func leftBy(m query.Motion, c *db.Changes) string {
+func (c *comparison) leftBy(m query.Motion) string {
 	switch {
-	case hasAny(c.Records.Removed, m.Record), hasAny(c.Components.Removed, components(m)...):
+	case hasAny(c.changes.Records.Removed, m.Record), hasAny(c.changes.Components.Removed, components(m)...):
 		return causeRemoved
-	case isChanged(m, c):
+	case c.isChanged(m):
 		return causeLeft
 	}
 	return causeForgotten
 }
 
-func isChanged(m query.Motion, c *db.Changes) bool {
-	return hasAny(c.Records.Changed, m.Record) || hasAny(c.Components.Changed, components(m)...) ||
-		hasAny(c.Events.Changed, m.Event) || hasAny(c.Events.Added, m.Event)
+// isChanged reports whether metadata of a motion changed, of its event or of its station.
+func (c *comparison) isChanged(m query.Motion) bool {
+	return hasAny(c.changes.Records.Changed, m.Record) || hasAny(c.changes.Components.Changed, components(m)...) ||
+		hasAny(c.changes.Events.Changed, m.Event) || hasAny(c.changes.Events.Added, m.Event) ||
+		hasAny(c.changes.Stations.Changed, c.stations[m.Record])
 }
 
-func isRecomputed(m query.Motion, c *db.Changes) bool { return hasAny(c.Recomputed, components(m)...) }
+func (c *comparison) isRecomputed(m query.Motion) bool {
+	return hasAny(c.changes.Recomputed, components(m)...)
+}
 
 // print writes the changes with their causes, the greatest first.
 func (d *driftReport) print(p *printer) {

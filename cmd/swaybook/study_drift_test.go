@@ -16,26 +16,28 @@ import (
 )
 
 // What happened to motions, by hand: of A another component was delivered, B went, C and D
-// changed in their metadata or their event's, E and F are chosen otherwise, G is computed
+// changed in their metadata or their event's, I in its station's, E and F are chosen otherwise, G is computed
 // anew by one of its horizontals, H is as it was.
 func TestCausesOf(t *testing.T) {
 	motion := func(record, event string) query.Motion {
 		return query.Motion{Record: record, Role: "rotd50", Members: []string{"h1", "h2"}, Event: event}
 	}
-	before := []query.Motion{motion("B", "e1"), motion("D", "e2"), motion("F", "e1"), motion("G", "e1"), motion("H", "e1")}
+	before := []query.Motion{motion("B", "e1"), motion("D", "e2"), motion("F", "e1"), motion("G", "e1"), motion("H", "e1"), motion("I", "e1")}
 	after := []query.Motion{motion("A", "e1"), motion("C", "e1"), motion("E", "e1"), motion("G", "e1"), motion("H", "e1")}
 	changes := &db.Changes{
 		Records:    db.Change{Removed: []string{"B"}, Changed: []string{"C"}},
 		Components: db.Change{Added: []string{"A h2", "E v"}},
 		Events:     db.Change{Changed: []string{"e2"}},
+		Stations:   db.Change{Changed: []string{"X.ONE"}},
 		Recomputed: []string{"G h2", "H v"},
 	}
 	got := map[string][]string{}
-	for _, c := range causesOf(before, after, changes) {
+	compared := &comparison{changes: changes, stations: map[string]string{"I": "X.ONE", "H": "X.TWO"}}
+	for _, c := range compared.causes(before, after) {
 		got[c.Cause] = c.Codes
 	}
 	want := map[string][]string{
-		causeAdded: {"A rotd50"}, causeRemoved: {"B rotd50"}, causeJoined: {"C rotd50"}, causeLeft: {"D rotd50"},
+		causeAdded: {"A rotd50"}, causeRemoved: {"B rotd50"}, causeJoined: {"C rotd50"}, causeLeft: {"D rotd50", "I rotd50"},
 		causeSelected: {"E rotd50"}, causeForgotten: {"F rotd50"}, causeComputed: {"G rotd50"},
 	}
 	if !reflect.DeepEqual(got, want) {
@@ -143,11 +145,11 @@ func TestUnchangedStudy(t *testing.T) {
 	}
 	makeOld(t, filepath.Join(dir, "records"))
 	first := reprocessed(t, file, exitRejected)
-	if !first.IsRead || first.Rejected != 1 || first.Outcome != outcomePublished {
+	if !first.IsRead || *first.Rejected != 1 || first.Outcome != outcomePublished {
 		t.Errorf("a rejected file: %+v", first)
 	}
 	again := reprocessed(t, file, exitRejected)
-	if again.IsRead || again.Ingest != nil || again.Rejected != 1 || again.Outcome != outcomeUnchanged || *again.Published != *first.Published || again.Drift != nil {
+	if again.IsRead || again.Ingest != nil || *again.Rejected != 1 || again.Outcome != outcomeUnchanged || *again.Published != *first.Published || again.Drift != nil {
 		t.Errorf("unchanged: %+v", again)
 	}
 	var stdout, stderr bytes.Buffer

@@ -22,8 +22,8 @@ func (s *studyState) writeMetrics(w io.Writer) error {
 		m.gauge("published_edition", "The number of the edition that questions read.", float64(*s.Published))
 	}
 	m.gauge("is_held_back", "1 where an edition is held back, else 0.", oneIf(s.Outcome == outcomeHeld))
-	if s.Run != nil {
-		m.gauge("rejected_files", "Files that are rejected.", float64(s.Rejected))
+	if s.Rejected != nil {
+		m.gauge("rejected_files", "Files that are rejected.", float64(*s.Rejected))
 	}
 	if s.Drift != nil {
 		m.gauge("drifting_figures", "Figures beyond the bound of the study.", float64(s.Drift.Beyond))

@@ -17,7 +17,6 @@ import (
 // outputs writes the answers of a study. They take their names together.
 type outputs struct {
 	store   *db.Store
-	program string
 	set     beside.Set
 	answers map[string]reply      // of one edition, by the product's path
 	written map[string]db.Written // what stands there, by path
@@ -77,12 +76,8 @@ func (o *outputs) swap(products []product, edition int64) error {
 		return err
 	}
 	for i := range products {
-		asked, err := products[i].asked(o.program)
-		if err != nil {
-			return errors.Join(err, o.set.Undo())
-		}
 		for _, f := range products[i].files {
-			o.written[f.path] = stateOf(f.path, edition, asked)
+			o.written[f.path] = stateOf(f.path, edition, products[i].asked)
 		}
 	}
 	return nil
@@ -104,15 +99,12 @@ func (o *outputs) refresh(ctx context.Context, products []product, edition int64
 	var stale []product
 	for i := range products {
 		p := &products[i]
-		isCurrent, err := o.isCurrent(p, edition)
-		if err != nil {
-			return err
-		}
-		if isCurrent {
+		if o.isCurrent(p, edition) {
 			continue
 		}
 		r, ok := o.answers[p.path]
 		if !ok {
+			var err error
 			r, err = o.ask(ctx, p, moment{run: edition})
 			if errors.Is(err, db.ErrOtherGeneration) {
 				return nil // it is held back what this program would have published
@@ -133,17 +125,8 @@ func (o *outputs) refresh(ctx context.Context, products []product, edition int64
 	return o.swap(stale, edition)
 }
 
-func (o *outputs) isCurrent(p *product, edition int64) (bool, error) {
-	asked, err := p.asked(o.program)
-	if err != nil {
-		return false, fmt.Errorf("%s: %w", p.path, err)
-	}
-	for _, f := range p.files {
-		if o.written[f.path] != stateOf(f.path, edition, asked) {
-			return false, nil
-		}
-	}
-	return true, nil
+func (o *outputs) isCurrent(p *product, edition int64) bool {
+	return !slices.ContainsFunc(p.files, func(f outputFile) bool { return o.written[f.path] != stateOf(f.path, edition, p.asked) })
 }
 
 // keep stores what stands where, so that the next run knows.
@@ -153,7 +136,7 @@ func (o *outputs) keep(ctx context.Context, products []product, before map[strin
 		for _, f := range products[i].files {
 			w := o.written[f.path]
 			now = append(now, w)
-			o.report(&products[i], w, before[f.path] != w)
+			o.report(&products[i], w, before[f.path])
 		}
 	}
 	if len(now) == len(before) && !slices.ContainsFunc(now, func(w db.Written) bool { return before[w.Path] != w }) {
@@ -162,10 +145,11 @@ func (o *outputs) keep(ctx context.Context, products []product, before map[strin
 	return o.store.Update(ctx, func(tx *db.Tx) error { return tx.SetWritten(ctx, now) })
 }
 
-func (o *outputs) report(p *product, w db.Written, isNew bool) {
-	r := outputReport{Product: p.path, Path: w.Path, Edition: w.Edition, IsNew: isNew}
+func (o *outputs) report(p *product, w, before db.Written) {
+	r := outputReport{Product: p.path, Path: w.Path, Edition: w.Edition}
 	if w.Size >= 0 {
 		r.Bytes = &w.Size
+		r.IsNew = w.Size != before.Size || w.ModifiedNS != before.ModifiedNS
 	}
 	if a := o.answers[p.path]; a.empty != nil {
 		r.Empty = a.empty.Error()
@@ -176,7 +160,7 @@ func (o *outputs) report(p *product, w db.Written, isNew bool) {
 }
 
 // newOutputs knows what stands there by the store's account.
-func newOutputs(ctx context.Context, store *db.Store, program string) (*outputs, map[string]db.Written, error) {
+func newOutputs(ctx context.Context, store *db.Store) (*outputs, map[string]db.Written, error) {
 	before, err := store.Written(ctx)
-	return &outputs{store: store, program: program, answers: map[string]reply{}, written: maps.Clone(before), reports: []outputReport{}}, before, err
+	return &outputs{store: store, answers: map[string]reply{}, written: maps.Clone(before), reports: []outputReport{}}, before, err
 }

@@ -19,8 +19,9 @@ import (
 // studyPlan is a study that was checked: all that it says is parsed, and what it
 // names has been read, ready to run.
 type studyPlan struct {
-	study *study.Study
-	isNew bool // the store is not there yet
+	study   *study.Study
+	decided string // digest, see decidedBy
+	isNew   bool   // the store is not there yet
 	// ingest has the store and what pipeline.Run takes, but for study.Takes, which says
 	// of files and members whether they are the study's.
 	ingest   ingestOptions
@@ -144,6 +145,7 @@ const sqliteMark = "SQLite format 3\x00"
 // ingest has the ingest command read its flags.
 func (p *planner) ingest() {
 	s := p.plan.study
+	p.plan.decided = decidedBy(s)
 	c, wrong := flagContext(p.c, ingestCommand(), s.Ingest)
 	logger, err := newLogger(p.c)
 	if err != nil {
@@ -229,6 +231,9 @@ func (p *planner) source(path string) (sourcePlan, error) {
 // outputs looks whether the files to write can be: folders that are missing will be made.
 func (p *planner) outputs() {
 	s := p.plan.study
+	if s.Metrics.Value != "" && s.State.Value == "" {
+		p.fail(s.Metrics.Line, "metrics", usagef("give state too, by which the next run knows when the last one was right"))
+	}
 	p.output("state", s.State)
 	p.output("metrics", s.Metrics)
 	for _, product := range s.Products {
@@ -246,14 +251,14 @@ func (p *planner) output(key string, file study.Text) {
 	info, err := os.Stat(file.Value)
 	if err == nil {
 		if !info.Mode().IsRegular() {
-			p.fail(file.Line, key, usagef("%s is there, and is no file", short(file.Value)))
+			p.fail(file.Line, key, fmt.Errorf("%s is there, and is no file", short(file.Value)))
 		}
 		return
 	}
 	for dir := filepath.Dir(file.Value); ; dir = filepath.Dir(dir) {
 		info, err := os.Stat(dir)
 		if err == nil && !info.IsDir() {
-			p.fail(file.Line, key, usagef("%s is no folder", short(dir)))
+			p.fail(file.Line, key, fmt.Errorf("%s is no folder", short(dir)))
 		}
 		if err == nil || dir == filepath.Dir(dir) {
 			return
@@ -290,10 +295,11 @@ func (p *planner) selections() {
 // products makes the questions of the products.
 func (p *planner) products() {
 	for _, described := range p.plan.study.Products {
+		asked := askedBy(&described)
 		c, wrong := flagContext(p.c, productCommands[described.Kind](), described.Settings)
 		ask, err := newQuestion[described.Kind](c)
 		p.blame(errors.Join(append(wrong, err)...), described.Settings, described.Line, described.Path())
-		out := product{path: described.Path(), name: described.Name, kind: described.Kind, selection: described.Selection, settings: described.Settings, ask: ask}
+		out := product{path: described.Path(), asked: asked, name: described.Name, kind: described.Kind, selection: described.Selection, settings: described.Settings, ask: ask}
 		for _, f := range described.Files {
 			out.files = append(out.files, outputFile{f.Value, fileFormats[f.Format]})
 		}

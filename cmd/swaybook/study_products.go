@@ -15,6 +15,7 @@ import (
 // product is a question of a study, ready to be asked.
 type product struct {
 	path      string // the table that describes it: of a selection that is watched, this
+	asked     string // digest of the question, see askedBy; of what is written only
 	name      string
 	kind      study.Kind
 	selection string // "" where it names none

@@ -44,7 +44,7 @@ func runReprocess(ctx context.Context, plan *studyPlan, o reprocessOptions, w io
 	}
 	plan.ingest.monitor.end()
 	r.state.end(err, pipelined.Clock(), pipelined.Started)
-	err = errors.Join(err, r.state.leave(plan.study.State.Value, plan.study.Metrics.Value))
+	err = errors.Join(err, r.state.leave(plan.study))
 	if lock != nil {
 		err = errors.Join(err, lock.Release())
 	}
@@ -69,21 +69,20 @@ func (r *studyRun) run(ctx context.Context) (err error) {
 		return err
 	}
 	defer func() { err = errors.Join(err, r.store.Close()) }()
-	decided, err := r.plan.decided()
-	if err != nil {
-		return err
-	}
 	opts := r.plan.ingest.pipeline
 	opts.Takes = r.plan.study.Takes
 	var before map[string]db.Written
-	if r.outputs, before, err = newOutputs(ctx, r.store, opts.Program); err != nil {
+	if r.outputs, before, err = newOutputs(ctx, r.store); err != nil {
 		return err
 	}
 	done, err := pipeline.Reprocess(ctx, r.store, opts, pipeline.Study{
-		Name: r.plan.study.Name.Value, File: r.plan.study.Path(), Decided: decided, Rehash: r.options.rehash, Approve: r.approve,
+		Name: r.plan.study.Name.Value, File: r.plan.study.Path(), Decided: r.plan.decided, Rehash: r.options.rehash, Approve: r.approve,
 	})
 	r.note(done, err == nil)
 	if err == nil {
+		if err := r.outputs.set.Close(); err != nil { // nothing is to be undone any more
+			return err
+		}
 		return r.follow(ctx, done, before)
 	}
 	if ctx.Err() != nil {
@@ -116,7 +115,7 @@ func numbered(id int64) *int64 {
 // follow does what comes after the state of the store is settled.
 func (r *studyRun) follow(ctx context.Context, done pipeline.Reprocessed, before map[string]db.Written) error {
 	if done.Damaged > 0 {
-		return errors.Join(fmt.Errorf("%s is damaged (records: %d)", r.plan.study.Store.Value, done.Damaged), r.outputs.set.Close())
+		return fmt.Errorf("%s is damaged (records: %d)", r.plan.study.Store.Value, done.Damaged)
 	}
 	if err := r.outputs.refresh(ctx, r.plan.products, done.Published); err != nil {
 		return err
@@ -136,7 +135,7 @@ func (r *studyRun) follow(ctx context.Context, done pipeline.Reprocessed, before
 	if err != nil {
 		return err
 	}
-	r.state.Rejected = rejected
+	r.state.Rejected = &rejected
 	if done.IsHeld {
 		return fmt.Errorf("%w: figures beyond %s: %d; edition %d stays published", errHeld, percentWords(*r.bound()), r.state.Drift.Beyond, done.Published)
 	}

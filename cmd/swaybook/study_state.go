@@ -1,13 +1,16 @@
 package main
 
 import (
+	"context"
 	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
 	"time"
 
+	"swaybook/db"
 	"swaybook/pipeline/beside"
+	"swaybook/pipeline/study"
 )
 
 // studyState is the last run of a study, as it is printed as JSON and left for monitoring.
@@ -32,8 +35,9 @@ type studyState struct {
 	Published *int64 `json:"published"`
 	Before    *int64 `json:"published_before"`
 	IsRead    bool   `json:"is_read"` // files were read, since something had changed
-	// Rejected counts what is rejected of the files as they are, by path.
-	Rejected int            `json:"rejected_files"`
+	// Rejected counts what is rejected of the files as they are, by path; null where nobody
+	// came to look.
+	Rejected *int           `json:"rejected_files"`
 	Ingest   *ingestReport  `json:"ingest"`
 	Changes  *changeReport  `json:"changes"`
 	Drift    *driftReport   `json:"drift"`
@@ -108,11 +112,14 @@ func (s *studyState) end(err error, ended, started time.Time) {
 
 func isOther(a, b *int64) bool { return a != nil && (b == nil || *a != *b) }
 
-// leave writes the state and the metrics where the study wants them.
-func (s *studyState) leave(state, metrics string) error {
-	return errors.Join(
-		leaveFile("state", state, func(w io.Writer) error { return writeJSON(w, s) }),
-		leaveFile("metrics", metrics, s.writeMetrics))
+// leave writes the state and the metrics where the study wants them. Where the state cannot
+// be written, the metrics say that the run failed.
+func (s *studyState) leave(wanted *study.Study) error {
+	err := leaveFile("state", wanted.State.Value, func(w io.Writer) error { return writeJSON(w, s) })
+	if err != nil {
+		s.ExitCode, s.Outcome = exitFailed, outcomeFailed
+	}
+	return errors.Join(err, leaveFile("metrics", wanted.Metrics.Value, s.writeMetrics))
 }
 
 // leaveFile writes a file whole.
@@ -126,12 +133,19 @@ func leaveFile(what, path string, fill func(io.Writer) error) error {
 	return nil
 }
 
-// leaveFailure is the state of a run that came to nothing, since what its study names is
-// not there.
-func (p *studyPlan) leaveFailure(err error) error {
+// leaveFailure leaves the state of a run that came to nothing, since what its study names is
+// not there; unless another run is at work, which leaves its own.
+func (p *studyPlan) leaveFailure(ctx context.Context, cause error) (err error) {
+	lock, err := db.TakeLock(ctx, p.study.Store.Value, holder(p.ingest.pipeline.Started))
+	if _, isHeld := errors.AsType[*db.LockedError](err); isHeld {
+		return nil
+	}
+	if err == nil {
+		defer func() { err = errors.Join(err, lock.Release()) }()
+	}
 	s := newStudyState(p)
-	s.end(err, p.ingest.pipeline.Clock(), p.ingest.pipeline.Started)
-	return s.leave(p.study.State.Value, p.study.Metrics.Value)
+	s.end(cause, p.ingest.pipeline.Clock(), p.ingest.pipeline.Started)
+	return s.leave(p.study)
 }
 
 // print writes the account for people.
@@ -155,8 +169,8 @@ func (r *studyRun) print(p *printer) {
 		s.Drift.print(p)
 	}
 	r.printOutputs(p)
-	if s.Rejected > 0 && s.Ingest == nil {
-		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", s.Rejected, quoted(s.Store))
+	if s.Rejected != nil && *s.Rejected > 0 && s.Ingest == nil {
+		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", *s.Rejected, quoted(s.Store))
 	}
 	r.printEnd(p)
 }
@@ -167,10 +181,9 @@ const shownCodes = 5
 func (r *studyRun) printOutputs(p *printer) {
 	for _, o := range r.state.Outputs {
 		switch {
-		case !o.IsNew:
-		case o.Bytes == nil:
+		case o.Empty != "":
 			p.printf("no answer, so no file %s: %s\n", r.plan.study.Short(o.Path), o.Empty)
-		default:
+		case o.IsNew:
 			p.printf("written %s\n", r.plan.study.Short(o.Path))
 		}
 	}

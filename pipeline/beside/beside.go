@@ -22,6 +22,7 @@ type Set struct{ files []*file }
 type file struct {
 	name    string
 	isGone  bool // shall be there no longer
+	isSame  bool // shall hold what it holds
 	isThere bool // something was, before Swap
 	isDone  bool // Swap has been at it
 }
@@ -43,17 +44,51 @@ func WriteFile(path string, fill func(io.Writer) error) error {
 }
 
 // Write has fill write what a file shall hold, and waits until it is on the disk. Folders
-// that are missing are made. The mode of a file that is there stays.
+// that are missing are made. The mode of a file that is there stays; one that holds just that
+// already is left alone.
 func (s *Set) Write(path string, fill func(io.Writer) error) error {
 	f, err := newFile(path)
 	if err == nil {
 		s.files = append(s.files, f)
 		err = f.write(fill)
 	}
+	if err == nil {
+		f.isSame, err = isEqual(f.part(), f.name)
+	}
 	if err != nil {
 		return fmt.Errorf("write %s: %w", path, err)
 	}
 	return nil
+}
+
+// isEqual reports whether two files hold the same; the other need not be there.
+func isEqual(name, other string) (bool, error) {
+	a, err := os.Open(name)
+	if err != nil {
+		return false, err
+	}
+	defer a.Close()
+	b, err := os.Open(other)
+	if err != nil {
+		return false, nil // it is written anew, or says itself why it cannot be
+	}
+	defer b.Close()
+	infoA, errA := a.Stat()
+	infoB, errB := b.Stat()
+	if errA != nil || errB != nil || infoA.Size() != infoB.Size() || !infoB.Mode().IsRegular() {
+		return false, nil
+	}
+	readerA, readerB := bufio.NewReader(a), bufio.NewReader(b)
+	for {
+		x, err := readerA.ReadByte()
+		y, errB := readerB.ReadByte()
+		if errors.Is(err, io.EOF) && errors.Is(errB, io.EOF) {
+			return true, nil
+		}
+		if err != nil || errB != nil || x != y {
+			return false, nil
+		}
+	}
 }
 
 // Remove has a file be there no longer, if it is.
@@ -123,6 +158,9 @@ func (s *Set) Swap() error {
 }
 
 func (f *file) swap() error {
+	if f.isSame {
+		return nil
+	}
 	err := f.save()
 	if err != nil {
 		return err

@@ -8,6 +8,7 @@ import (
 	"runtime"
 	"slices"
 	"testing"
+	"time"
 )
 
 func text(s string) func(io.Writer) error {
@@ -121,6 +122,23 @@ func TestFailuresLeaveAll(t *testing.T) {
 	if err := new(Set).Write(filepath.Join(first, "below.csv"), text("4")); err == nil {
 		t.Error("a file was written below a file")
 	}
+}
+
+// A file that holds what it shall hold already keeps its time.
+func TestEqualFilesStay(t *testing.T) {
+	dir := t.TempDir()
+	path := filepath.Join(dir, "a.csv")
+	old := time.Now().Add(-time.Hour).Truncate(time.Second)
+	must(t, os.WriteFile(path, []byte("1\n2\n"), 0o666), os.Chtimes(path, old, old))
+	must(t, WriteFile(path, text("1\n2\n")))
+	if info, err := os.Stat(path); err != nil || !info.ModTime().Equal(old) {
+		t.Errorf("equal content gave it the time %v, %v", info.ModTime(), err)
+	}
+	must(t, WriteFile(path, text("1\n3\n")))
+	if info, err := os.Stat(path); err != nil || info.ModTime().Equal(old) {
+		t.Errorf("other content left it at %v, %v", info.ModTime(), err)
+	}
+	wantTree(t, "written twice", dir, map[string]string{"a.csv": "1\n3\n"})
 }
 
 // A link stays one: what it leads to is replaced.
