@@ -90,10 +90,14 @@ func (t *Tx) AddSource(ctx context.Context, src Source, run int64) (int64, error
 	return id, nil
 }
 
-// Reject stores why a file, or a channel of it, could not be stored.
+// Reject stores why a file, or a channel of it, could not be stored. What the newest edition
+// has of it keeps its number, so that a run which rejects again what was rejected changes
+// nothing.
 func (t *Tx) Reject(ctx context.Context, r Rejection, run int64) error {
-	err := t.exec(ctx, `INSERT INTO rejection (path, line, cause, sha256, run_id) VALUES (?, ?, ?, ?, ?)
-		ON CONFLICT (path, line, cause) DO UPDATE SET sha256 = excluded.sha256, run_id = excluded.run_id`,
+	err := t.exec(ctx, fmt.Sprintf(`INSERT INTO rejection (id, path, line, cause, sha256, run_id) VALUES (
+		(SELECT e.id FROM edition_rejection e WHERE e.path = ?1 AND e.line = ?2 AND e.cause = ?3 AND e.until = %d AND NOT EXISTS (SELECT 1 FROM rejection r WHERE r.id = e.id)),
+		?1, ?2, ?3, ?4, ?5)
+		ON CONFLICT (path, line, cause) DO UPDATE SET sha256 = excluded.sha256, run_id = excluded.run_id`, open),
 		r.Path, r.Line, r.Cause, textOrNull(r.SHA256), run)
 	if err != nil {
 		return fmt.Errorf("store rejection of %s: %w", r.Path, err)
