@@ -43,7 +43,7 @@ const (
 	DetailBand                         // StepS, LowCutHz, HighCutHz and Conditioning
 	DetailMeasures                     // Measures
 	DetailFindings                     // Findings, with DetailBand those of Conditioning too
-	DetailChannel                      // ID and the rest of Component, the source file's description too
+	DetailChannel                      // ID and the rest of Component, corners and the source file's description too
 	AllDetails     = DetailRecord | DetailMotion | DetailPeaks | DetailBand | DetailMeasures | DetailFindings | DetailChannel
 )
 
@@ -53,16 +53,17 @@ func (s *Snapshot) Components(ctx context.Context, details Details) ([]HeldCompo
 	return s.selectComponents(ctx, details, "")
 }
 
-// ComponentsOf returns the components that the file with this digest gave, as
-// the transaction sees them.
-func (t *Tx) ComponentsOf(ctx context.Context, g Generation, sha256 string) ([]HeldComponent, error) {
-	s := Snapshot{tx: t.tx.tx, Generation: g, shown: working(g.ID)}
-	return s.selectComponents(ctx, AllDetails, sha256)
+// ComponentsOf returns the components that the file with this digest gave, as the
+// transaction sees them, without what was found in them or computed of them.
+func (t *Tx) ComponentsOf(ctx context.Context, sha256 string) ([]HeldComponent, error) {
+	s := Snapshot{tx: t.tx, shown: working(0)}
+	return s.selectComponents(ctx, DetailRecord|DetailMotion|DetailChannel, sha256)
 }
 
 // selectComponents reads the components of the file with this digest, of all
 // files where it is "". Records, events and stations are shared by components and
-// read once.
+// read once. What is computed is read of all components alone: a file's few would cost
+// as much, and nobody asks for it.
 func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256 string) ([]HeldComponent, error) {
 	condition := ""
 	var args []any
@@ -80,22 +81,22 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 	}
 	var conditioned map[roleOf]*Conditioning
 	if details&DetailBand != 0 {
-		if conditioned, err = s.conditionings(ctx, condition, args); err != nil {
+		if conditioned, err = s.conditionings(ctx); err != nil {
 			return nil, err
 		}
 	}
 	var findings map[roleOf][]Finding
 	if details&DetailFindings != 0 {
-		if findings, err = s.findings(ctx, condition, args); err != nil {
+		if findings, err = s.findings(ctx); err != nil {
 			return nil, err
 		}
-		if err := s.addConditionedFindings(ctx, conditioned, condition, args); err != nil {
+		if err := s.addConditionedFindings(ctx, conditioned); err != nil {
 			return nil, err
 		}
 	}
 	var measures map[roleOf]map[string]float64
 	if details&DetailMeasures != 0 {
-		if measures, err = s.measures(ctx, condition, args); err != nil {
+		if measures, err = s.measures(ctx); err != nil {
 			return nil, err
 		}
 	}
@@ -141,20 +142,14 @@ type findingOf struct {
 	Finding
 }
 
-// ofComputed joins what is computed in the generation of the components that meet the
-// condition, where there is one, to a table of it under the name x.
-func (s *Snapshot) ofComputed(table, condition string, args []any) (string, []any) {
-	text := ` FROM ` + s.shown("computed") + ` k JOIN ` + table + ` x ON x.computation_id = k.computation_id WHERE true`
-	if condition != "" {
-		text += ` AND k.record_id IN (SELECT c.record_id FROM ` + s.shown("component") + ` c` + condition + `)`
-	}
-	return text, args
+// ofComputed joins what is computed in the generation to a table of it under the name x.
+func (s *Snapshot) ofComputed(table string) string {
+	return ` FROM ` + s.shown("computed") + ` k JOIN ` + table + ` x ON x.computation_id = k.computation_id`
 }
 
 // conditionings are those of the generation.
-func (s *Snapshot) conditionings(ctx context.Context, condition string, args []any) (map[roleOf]*Conditioning, error) {
-	from, args := s.ofComputed("conditioning", condition, args)
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.step_s, x.samples, x.lead_s, x.low_cut_hz, x.high_cut_hz, x.long_s`+from, args...)
+func (s *Snapshot) conditionings(ctx context.Context) (map[roleOf]*Conditioning, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.step_s, x.samples, x.lead_s, x.low_cut_hz, x.high_cut_hz, x.long_s`+s.ofComputed("conditioning"))
 	if err != nil {
 		return nil, fmt.Errorf("read conditioning: %w", err)
 	}
@@ -175,10 +170,10 @@ func (s *Snapshot) conditionings(ctx context.Context, condition string, args []a
 	return out, nil
 }
 
-// findings are those of the components that meet the condition, in the order of flags.
-func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (map[roleOf][]Finding, error) {
+// findings are those of the components, in the order of flags.
+func (s *Snapshot) findings(ctx context.Context) (map[roleOf][]Finding, error) {
 	rows, err := s.tx.QueryContext(ctx, `SELECT c.record_id, c.role, f.flag, f.value, f.bound, f.words
-		FROM `+s.shown("finding")+` f JOIN `+s.shown("component")+` c ON c.id = f.component_id`+condition+` ORDER BY f.component_id, f.flag`, args...)
+		FROM `+s.shown("finding")+` f JOIN `+s.shown("component")+` c ON c.id = f.component_id ORDER BY f.component_id, f.flag`)
 	if err != nil {
 		return nil, fmt.Errorf("read findings: %w", err)
 	}
@@ -195,9 +190,8 @@ func (s *Snapshot) findings(ctx context.Context, condition string, args []any) (
 
 // addConditionedFindings adds to the conditionings what was found in the motions that
 // they left.
-func (s *Snapshot) addConditionedFindings(ctx context.Context, to map[roleOf]*Conditioning, condition string, args []any) error {
-	from, args := s.ofComputed("conditioned_finding", condition, args)
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.flag, x.value, x.bound, x.words`+from+` ORDER BY k.record_id, k.role, x.flag`, args...)
+func (s *Snapshot) addConditionedFindings(ctx context.Context, to map[roleOf]*Conditioning) error {
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.flag, x.value, x.bound, x.words`+s.ofComputed("conditioned_finding")+` ORDER BY k.record_id, k.role, x.flag`)
 	if err != nil {
 		return fmt.Errorf("read findings: %w", err)
 	}
@@ -256,10 +250,9 @@ func (s *Snapshot) flag(ctx context.Context, flagged map[roleOf][]Finding, flag,
 }
 
 // measures are those of the generation but for the peaks.
-func (s *Snapshot) measures(ctx context.Context, condition string, args []any) (map[roleOf]map[string]float64, error) {
-	from, args := s.ofComputed("measure", condition, args)
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.name, x.value`+from+
-		` AND x.name NOT IN ('`+MeasurePGA+`', '`+MeasurePGV+`', '`+MeasurePGD+`')`, args...)
+func (s *Snapshot) measures(ctx context.Context) (map[roleOf]map[string]float64, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, x.name, x.value`+s.ofComputed("measure")+
+		` WHERE x.name NOT IN ('`+MeasurePGA+`', '`+MeasurePGV+`', '`+MeasurePGD+`')`)
 	if err != nil {
 		return nil, fmt.Errorf("read measures: %w", err)
 	}
@@ -316,9 +309,9 @@ func (v *componentRow) columns(d Details) (names string, into []any) {
 	}
 	if d&DetailChannel != 0 {
 		names += `, c.id, c.label, c.rank, c.channel, c.samples, c.unit, c.processing,
-			c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format`
+			c.low_cut_hz, c.high_cut_hz, c.header_peak_m_s2, c.warnings, c.source_id, c.source_line, f.path, f.sha256, f.format`
 		into = append(into, &v.ID, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing,
-			&v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine, &v.SourcePath, &v.SourceSHA256, &v.SourceFormat)
+			&v.LowCutHz, &v.HighCutHz, &v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine, &v.SourcePath, &v.SourceSHA256, &v.SourceFormat)
 	}
 	return names, into
 }

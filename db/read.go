@@ -10,7 +10,7 @@ import (
 
 // Snapshot is what a reader sees: one edition, whatever is written meanwhile.
 type Snapshot struct {
-	tx       *sql.Tx
+	tx       queryer
 	store    *Store
 	shown    tables
 	reserved []OffGridBlock // by ReserveOffGrid

@@ -18,7 +18,7 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 	if w.opts.Catalogue == nil && w.opts.Hints.Metadata.IsEmpty() {
 		return nil
 	}
-	components, err := tx.ComponentsOf(ctx, w.run.generation, res.source.SHA256)
+	components, err := tx.ComponentsOf(ctx, res.source.SHA256)
 	if err != nil {
 		return err
 	}
