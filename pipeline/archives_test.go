@@ -162,7 +162,7 @@ func TestDocumentsInArchivesAreBounded(t *testing.T) {
 	file := ingest.Found{Path: filepath.Join(dir, "a.zip"), Rel: "a.zip"}
 	for left, want := range map[int]string{100: "", 26: "2.xml", 10: "1.xml 2.xml"} {
 		src := newSource([]ingest.Found{file}, withDefaults(options()))
-		a := openArchive(file)
+		a, _ := openArchive(file)
 		src.readMembers(t.Context(), a, &ingest.Metadata{}, &left)
 		a.Close()
 		var refused []string

@@ -39,7 +39,7 @@ func (s *source) readMetadata(ctx context.Context, m *ingest.Metadata) {
 		if ingest.MayBeMetadata(baseOf(f.Path)) {
 			used, err := m.AddFile(ctx, f.Path)
 			s.decide(ctx, f, used, err)
-		} else if a := openArchive(f); a != nil {
+		} else if a, _ := openArchive(f); a != nil {
 			s.readMembers(ctx, a, m, &left)
 			a.Close()
 		}

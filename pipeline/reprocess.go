@@ -7,9 +7,11 @@ import (
 	"fmt"
 	"os"
 	"slices"
+	"strings"
 
 	"swaybook/db"
 	"swaybook/ingest"
+	"swaybook/ingest/archive"
 )
 
 // Study is what a run of a study needs beside the options.
@@ -194,6 +196,7 @@ func (p *reprocessing) put(ctx context.Context) (newest db.Edition, err error) {
 			return err
 		}
 		if p.done.IsRead {
+			p.distrust()
 			err = errors.Join(tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
 		}
 		var errNewest error
@@ -204,6 +207,18 @@ func (p *reprocessing) put(ctx context.Context) (newest db.Edition, err error) {
 		p.done.Edition = newest.ID
 	}
 	return newest, err
+}
+
+// distrust has the next run look into the files that could not be read: who may read them,
+// or whether a disk answers, is in neither their size nor their time.
+func (p *reprocessing) distrust() {
+	for _, path := range p.unread {
+		for i := range p.seen {
+			if s := &p.seen[i]; path == s.Path || strings.HasPrefix(path, archive.Join(s.Path, "")) {
+				s.ModifiedNS = -1
+			}
+		}
+	}
 }
 
 // errBarren says that nothing is left to publish.

@@ -8,6 +8,7 @@ import (
 	"os"
 	"path"
 	"path/filepath"
+	"regexp"
 	"sync/atomic"
 	"time"
 
@@ -77,12 +78,14 @@ func (s *source) file(ctx context.Context, f ingest.Found, yield func(item) bool
 	if it.skip != "" || it.Err != nil {
 		return yield(it)
 	}
-	opened := openArchive(f)
+	opened, err := openArchive(f)
 	if opened != nil {
 		defer opened.Close()
 	}
+	// An archive that cannot be opened is not left out because its name is no record's.
+	isArchive := opened != nil || err != nil && namesArchive.MatchString(f.Path)
 	switch {
-	case !s.takes(f.Rel, opened != nil):
+	case !s.takes(f.Rel, isArchive):
 		s.total.Add(-1)
 		return true
 	case opened == nil:
@@ -107,19 +110,22 @@ type openedArchive struct {
 	info  fs.FileInfo
 }
 
-// openArchive opens the file if it is an archive. What cannot be read is none: the
-// worker says why.
-func openArchive(found ingest.Found) *openedArchive {
+// namesArchive matches what archives are mostly called, where nothing else can be known.
+var namesArchive = regexp.MustCompile(`(?i)\.(zip|tar|tgz|tbz2?|gz|bz2)$`)
+
+// openArchive opens the file if it is an archive, and returns nil for any other. The error
+// is that of what cannot be opened, of which the worker says it again.
+func openArchive(found ingest.Found) (*openedArchive, error) {
 	f, err := os.Open(found.Path)
 	if err != nil {
-		return nil
+		return nil, err
 	}
 	info, err := f.Stat()
 	if err != nil || !archive.Begins(f) {
 		f.Close()
-		return nil
+		return nil, err
 	}
-	return &openedArchive{f, found, info}
+	return &openedArchive{f, found, info}, nil
 }
 
 // members reads what is in the archive; skip says why a member need not be read.

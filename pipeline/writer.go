@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"slices"
+	"syscall"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -23,6 +24,7 @@ type writer struct {
 	known   map[db.Statement]string // what settlers know to be stated
 	isWhole bool                    // nothing is published of a run that does not come to its end
 	doubts  []recordDoubt           // kept to the end: another file may state what one does not
+	unread  []string                // files and members that the system did not let be read
 }
 
 func newWriter(store Store, run state, opts Options, src *source) *writer {
@@ -212,6 +214,9 @@ func (w *writer) bring(ctx context.Context, tx *db.Tx, from *departure, recordID
 
 // reject stores one cause against the file.
 func (w *writer) reject(ctx context.Context, tx *db.Tx, res result, report FileReport, line int, cause error) (FileReport, error) {
+	if _, isOfSystem := errors.AsType[syscall.Errno](cause); isOfSystem {
+		w.unread = append(w.unread, res.source.Path)
+	}
 	r := db.Rejection{Path: res.source.Path, Line: line, Cause: cause.Error(), SHA256: res.source.SHA256}
 	if pe, ok := errors.AsType[*ingest.ParseError](cause); ok {
 		r.Line, r.Cause = pe.Line, pe.Cause()
