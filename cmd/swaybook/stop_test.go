@@ -131,22 +131,33 @@ type process struct {
 // begin starts the command and waits for what another process does that tells nobody.
 func begin(t *testing.T, cmd *exec.Cmd, begun func() bool) *process {
 	t.Helper()
-	p := &process{Cmd: cmd, ended: make(chan error, 1)}
+	p, ok := watch(t, cmd, begun)
+	if !ok {
+		t.Fatalf("the run ended before it was so far: %v, %s", <-p.ended, p.stderr.String())
+	}
+	return p
+}
+
+// watch is begin for a command that may end before it is so far; ok is false then.
+func watch(t *testing.T, cmd *exec.Cmd, begun func() bool) (p *process, ok bool) {
+	t.Helper()
+	p = &process{Cmd: cmd, ended: make(chan error, 1)}
 	cmd.Stderr = &p.stderr
 	if err := cmd.Start(); err != nil {
 		t.Fatal(err)
 	}
 	go func() { p.ended <- cmd.Wait() }()
-	tick := time.NewTicker(2 * time.Millisecond)
+	tick := time.NewTicker(time.Millisecond)
 	defer tick.Stop()
 	for !begun() {
 		select {
 		case err := <-p.ended:
-			t.Fatalf("the run ended before it was so far: %v, %s", err, p.stderr.String())
+			p.ended <- err
+			return p, false
 		case <-tick.C:
 		}
 	}
-	return p
+	return p, true
 }
 
 // stop starts the command and sends it the signal as soon as it has begun. One that can
