@@ -281,6 +281,10 @@ func explain(err error) error {
 		return fmt.Errorf("another process is writing to the store: %w", err)
 	case strings.Contains(text, "readonly database"):
 		return fmt.Errorf("the file or its folder may not be written to: %w", err)
+	case codeOf(err) == sqlite3.SQLITE_FULL:
+		return fmt.Errorf("the disk is full: %w", err)
+	case codeOf(err) == sqlite3.SQLITE_IOERR:
+		return fmt.Errorf("the system cannot read or write its files, for want of room or of a sound disk: %w", err)
 	}
 	return err
 }

@@ -22,7 +22,11 @@ func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 	if s.write == nil {
 		return errReading
 	}
-	return transact(ctx, s.write, f)
+	err := transact(ctx, s.write, f)
+	if codeOf(err) != 0 {
+		err = fmt.Errorf("write to store %s: %w", s.path, err)
+	}
+	return err
 }
 
 func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) (err error) {

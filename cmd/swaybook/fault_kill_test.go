@@ -25,6 +25,8 @@ type killCase struct {
 
 func toTheEnd(s *faultStudy) { s.t.Helper(); mustRun(s.t, s.reprocess()) }
 
+func reprocessAll(s *faultStudy) *exec.Cmd { return s.reprocess() }
+
 // aboutToWrite reports whether files of the products stand beside those that are there.
 func aboutToWrite(s *faultStudy) bool {
 	for _, folder := range faultFolders[1:] {
@@ -42,17 +44,17 @@ var killCases = []killCase{
 		toTheEnd(s)
 		s.be("standard", false)
 		toTheEnd(s) // so that keep = 2 leaves something to prune
-	}, func(s *faultStudy) { s.be("standard", true) }, (*faultStudy).reprocess, aboutToWrite},
+	}, func(s *faultStudy) { s.be("standard", true) }, reprocessAll, aboutToWrite},
 	{"ingest first", nil, func(s *faultStudy) { s.be("standard", false) }, (*faultStudy).ingestStandard, nil},
 	{"reprocess by another recipe", func(s *faultStudy) { s.be("standard", false); toTheEnd(s) },
-		func(s *faultStudy) { s.be("as-delivered", false) }, (*faultStudy).reprocess, aboutToWrite},
+		func(s *faultStudy) { s.be("as-delivered", false) }, reprocessAll, aboutToWrite},
 	{"ingest more", func(s *faultStudy) { s.be("standard", false); mustRun(s.t, s.ingestStandard()) },
 		func(s *faultStudy) { s.add("NWT_CDH-UP.AT2") }, (*faultStudy).ingestStandard, nil},
 	{"ingest by another recipe", func(s *faultStudy) { s.be("standard", false); mustRun(s.t, s.ingestStandard()) },
 		func(*faultStudy) {}, func(s *faultStudy) *exec.Cmd { return s.ingest("as-delivered") }, nil},
-	{"reprocess first", nil, func(s *faultStudy) { s.be("standard", false) }, (*faultStudy).reprocess, aboutToWrite},
+	{"reprocess first", nil, func(s *faultStudy) { s.be("standard", false) }, reprocessAll, aboutToWrite},
 	{"reprocess nothing but a lost file", func(s *faultStudy) { s.be("standard", false); toTheEnd(s) },
-		func(s *faultStudy) { s.check(os.Remove(s.at("out/each.csv"))) }, (*faultStudy).reprocess, aboutToWrite},
+		func(s *faultStudy) { s.check(os.Remove(s.at("out/each.csv"))) }, reprocessAll, aboutToWrite},
 }
 
 // Whenever a run is killed, what others see is that of before or of after, each file whole;
@@ -96,7 +98,7 @@ func (c *killCase) kill(s *faultStudy, times int, rng *rand.Rand) {
 	for killed := 0; killed < times && seen["ended"] < 5*times+20; {
 		again()
 		isLate := c.isLate != nil && rng.IntN(3) == 0
-		begun, within := c.holds, lasts
+		begun, within := isHeld, lasts
 		if isLate {
 			begun, within = c.isLate, lastsLate
 		}
@@ -119,8 +121,8 @@ func (c *killCase) kill(s *faultStudy, times int, rng *rand.Rand) {
 	s.t.Logf("a run holds the store for %v, at last writes for %v; killed, and what was seen then: %v", lasts, lastsLate, seen)
 }
 
-// holds reports whether the run has begun: it has the lock.
-func (*killCase) holds(s *faultStudy) bool {
+// isHeld reports whether a run has begun: it has the lock.
+func isHeld(s *faultStudy) bool {
 	_, err := os.Stat(s.store + ".lock")
 	return err == nil
 }
@@ -142,7 +144,7 @@ func (c *killCase) lasts(s *faultStudy, again func(), times int) (all, late time
 		}
 		return max(longest, time.Millisecond)
 	}
-	if all = measure(c.holds); c.isLate != nil {
+	if all = measure(isHeld); c.isLate != nil {
 		late = measure(c.isLate)
 	}
 	return all, late

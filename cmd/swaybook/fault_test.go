@@ -5,6 +5,7 @@ package main
 import (
 	"bytes"
 	"errors"
+	"flag"
 	"io/fs"
 	"maps"
 	"os"
@@ -17,6 +18,16 @@ import (
 	"swaybook/db"
 	"swaybook/pipeline/demo"
 )
+
+var allFaults = flag.Bool("faults", false, "try every limit and wait out every timeout in the tests of faults, for some minutes")
+
+// thinned are the first, the middle and the last of cases unless all are to be tried.
+func thinned[T any](cases ...T) []T {
+	if *allFaults || len(cases) < 3 {
+		return cases
+	}
+	return []T{cases[0], cases[len(cases)/2], cases[len(cases)-1]}
+}
 
 const faultStudyText = `name = "Wharves"
 store = "store/wharves.db"
@@ -132,8 +143,8 @@ func (s *faultStudy) age(isLater bool) {
 }
 
 // reprocess and ingest are commands on the study.
-func (s *faultStudy) reprocess() *exec.Cmd {
-	return exec.Command("swaybook", "--quiet", "reprocess", s.file)
+func (s *faultStudy) reprocess(args ...string) *exec.Cmd {
+	return exec.Command("swaybook", append([]string{"--quiet", "reprocess", s.file}, args...)...)
 }
 
 func (s *faultStudy) ingest(recipe string) *exec.Cmd {
