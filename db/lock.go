@@ -107,10 +107,12 @@ func takeLock(ctx context.Context, store string, holder Holder) (*Lock, error) {
 	}
 }
 
-// permissionsLike are those of the store, so that whoever may write to it may lock it.
+// permissionsLike are those of the store, so that whoever may write to it may lock it; but
+// whoever makes the lock may write into it. Otherwise the lock of a store that may not be
+// written to would stay, and nobody could open it once the store may be.
 func permissionsLike(store string) fs.FileMode {
 	if info, err := os.Stat(store); err == nil {
-		return info.Mode().Perm()
+		return info.Mode().Perm() | 0o600
 	}
 	return 0o666
 }

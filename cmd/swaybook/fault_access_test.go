@@ -1,0 +1,202 @@
+//go:build linux
+
+package main
+
+import (
+	"database/sql"
+	"io/fs"
+	"os"
+	"os/exec"
+	"path/filepath"
+	"strings"
+	"syscall"
+	"testing"
+	"time"
+)
+
+// nobody is the number of the user who owns nothing.
+const nobody = 65534
+
+// nobodysStudy is a study in a folder of a user whom modes of files bind, with a program
+// that runs as him. The administrator is bound by none.
+func nobodysStudy(t *testing.T) (s *faultStudy, asNobody func(*exec.Cmd) *exec.Cmd) {
+	t.Helper()
+	if testing.Short() {
+		t.Skip("runs a study many times")
+	}
+	dir, err := os.MkdirTemp("", "faults")
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() { os.RemoveAll(dir) })
+	s = newFaultStudy(t, dir)
+	if os.Geteuid() != 0 {
+		return s, func(cmd *exec.Cmd) *exec.Cmd { return cmd }
+	}
+	program, err := os.Executable()
+	s.check(err)
+	text, err := os.ReadFile(program)
+	s.check(err)
+	s.check(os.WriteFile(s.at("swaybook"), text, 0o755))
+	s.check(filepath.WalkDir(dir, func(path string, _ fs.DirEntry, err error) error {
+		if err != nil {
+			return err
+		}
+		return os.Lchown(path, nobody, nobody)
+	}))
+	return s, func(cmd *exec.Cmd) *exec.Cmd {
+		out := exec.Command(s.at("swaybook"), cmd.Args[1:]...)
+		out.Dir = dir
+		out.SysProcAttr = &syscall.SysProcAttr{Credential: &syscall.Credential{Uid: nobody, Gid: nobody}}
+		return out
+	}
+}
+
+// changeMode changes modes for the length of f.
+func (s *faultStudy) changeMode(mode fs.FileMode, paths []string, f func()) {
+	s.t.Helper()
+	before := map[string]fs.FileMode{}
+	for _, path := range paths {
+		info, err := os.Stat(path)
+		s.check(err)
+		before[path] = info.Mode().Perm()
+		s.check(os.Chmod(path, mode))
+	}
+	f()
+	for path, mode := range before {
+		s.check(os.Chmod(path, mode))
+	}
+}
+
+// A store, a folder of products or a folder of stores that may not be written to: a run says
+// so and changes nothing, questions are answered.
+func TestNothingMayBeWritten(t *testing.T) {
+	s, asNobody := nobodysStudy(t)
+	mustRun(t, asNobody(s.reprocess()))
+	before := s.left()
+	text, err := os.ReadFile(s.file)
+	s.check(err)
+	s.check(os.WriteFile(s.file, []byte(strings.Replace(string(text), `"standard"`, `"as-delivered"`, 1)), 0o666))
+	for _, c := range []struct {
+		what, named string
+		paths       []string
+		mode        fs.FileMode
+	}{
+		{"store", s.store, []string{s.store}, 0o444},
+		{"folder of the store", s.store, []string{s.at("store")}, 0o555},
+		{"products", s.at("out"), []string{s.at("out")}, 0o555},
+	} {
+		s.changeMode(c.mode, c.paths, func() {
+			s.failedToWriteOf(c.what, asNobody(s.reprocess()), c.named)
+			mustRun(t, asNobody(exec.Command("swaybook", "--store", s.store, "query", "spectrum", "--screen", "none", "--periods", "0.5", "--component", "each")))
+		})
+		s.untouched(c.what, before)
+	}
+	mustRun(t, asNobody(s.reprocess()))
+	after := s.left()
+	if after.digest == before.digest {
+		t.Error("the last run changed nothing")
+	}
+	s.finished("writable", after)
+}
+
+// failedToWriteOf runs a command that must fail and name the place.
+func (s *faultStudy) failedToWriteOf(what string, cmd *exec.Cmd, place string) {
+	s.t.Helper()
+	text, _ := cmd.CombinedOutput()
+	s.failedToWrite(what, string(text), cmd.ProcessState.ExitCode(), place)
+	s.t.Logf("%s: %s", what, lastLine(text))
+}
+
+// A file system that may only be read stops the administrator, too.
+func TestReadOnlyFileSystem(t *testing.T) {
+	s, before, after, _ := laterStudy(t)
+	t.Run("mounted", func(t *testing.T) {
+		s.t = t
+		mount(t, s.at("store"), s.at("store"), "", syscall.MS_BIND, "")
+		s.check(syscall.Mount("", s.at("store"), "", syscall.MS_BIND|syscall.MS_REMOUNT|syscall.MS_RDONLY, ""))
+		s.failedToWriteOf("read-only file system", s.reprocess(), s.store)
+		s.untouched("read-only file system", before)
+		mustRun(t, exec.Command("swaybook", "--store", s.store, "query", "records"))
+	})
+	s.t = t
+	mustRun(t, s.reprocess())
+	s.finished("writable", after)
+}
+
+// Files and folders among the records that may not be read are rejected with their cause,
+// by a run that reads the others; once they may be, the next run reads them, though
+// nothing about them has changed.
+func TestRecordsMayNotBeRead(t *testing.T) {
+	s, asNobody := nobodysStudy(t)
+	mustRun(t, asNobody(s.reprocess()))
+	want := s.left()
+	folders, err := filepath.Glob(s.at("records/q*"))
+	s.check(err)
+	for what, paths := range map[string][]string{
+		"file":   {s.at("records/NWT_CDH000.AT2")},
+		"folder": folders[:1],
+	} {
+		s.changeMode(0, paths, func() {
+			// What was read is not read again unasked; what could not be is.
+			for _, args := range [][]string{{"--rehash"}, nil} {
+				var out strings.Builder
+				cmd := asNobody(s.reprocess(args...))
+				cmd.Stdout = &out
+				if cmd.Run(); cmd.ProcessState.ExitCode() != exitRejected || !strings.Contains(out.String(), "permission denied") {
+					t.Errorf("%s: exit code %d, %s", what, cmd.ProcessState.ExitCode(), out.String())
+				}
+			}
+			if got := s.left(); got.digest == want.digest {
+				t.Errorf("%s: its records are there still", what)
+			}
+		})
+		mustRun(t, asNobody(s.reprocess()))
+		s.finished(what, want)
+	}
+}
+
+// A run waits for whoever else writes to the store.
+func TestAnotherWriter(t *testing.T) {
+	s, before, after, again := laterStudy(t)
+	again()
+	other, err := sql.Open("sqlite", "file:"+s.store)
+	s.check(err)
+	defer other.Close()
+	conn, err := other.Conn(t.Context())
+	s.check(err)
+	do := func(text string) {
+		t.Helper()
+		_, err := conn.ExecContext(t.Context(), text)
+		s.check(err)
+	}
+	do("BEGIN IMMEDIATE")
+	p, _ := watch(t, s.reprocess(), func() bool { return isHeld(s) })
+	select {
+	case err := <-p.ended:
+		t.Fatalf("the run did not wait: %v, %s", err, p.stderr.String())
+	case <-time.After(500 * time.Millisecond):
+	}
+	s.untouched("while it waits", before)
+	do("ROLLBACK")
+	if err := <-p.ended; err != nil {
+		t.Errorf("%v, %s", err, p.stderr.String())
+	}
+	s.finished("after it waited", after)
+	if !*allFaults {
+		t.Log("whether it gives up after half a minute is tried with -faults")
+		return
+	}
+	again()
+	conn.Close()
+	conn, err = other.Conn(t.Context())
+	s.check(err)
+	do("BEGIN IMMEDIATE")
+	start := time.Now()
+	s.failedToWriteOf("locked", s.reprocess(), s.store)
+	t.Logf("gave up after %v", time.Since(start))
+	do("ROLLBACK")
+	s.untouched("locked", before)
+	mustRun(t, s.reprocess())
+	s.finished("unlocked", after)
+}
