@@ -4,6 +4,7 @@ package main
 
 import (
 	"database/sql"
+	"errors"
 	"io/fs"
 	"os"
 	"os/exec"
@@ -24,6 +25,7 @@ func nobodysStudy(t *testing.T) (s *faultStudy, asNobody func(*exec.Cmd) *exec.C
 	if testing.Short() {
 		t.Skip("runs a study many times")
 	}
+	t.Parallel()
 	dir, err := os.MkdirTemp("", "faults")
 	if err != nil {
 		t.Fatal(err)
@@ -156,21 +158,25 @@ func TestRecordsMayNotBeRead(t *testing.T) {
 	}
 }
 
-// A run waits for whoever else writes to the store.
-func TestAnotherWriter(t *testing.T) {
-	s, before, after, again := laterStudy(t)
-	again()
+// holdStore has somebody else write to the store until release is called.
+func (s *faultStudy) holdStore() (release func()) {
+	s.t.Helper()
 	other, err := sql.Open("sqlite", "file:"+s.store)
 	s.check(err)
-	defer other.Close()
-	conn, err := other.Conn(t.Context())
+	conn, err := other.Conn(s.t.Context())
 	s.check(err)
-	do := func(text string) {
-		t.Helper()
-		_, err := conn.ExecContext(t.Context(), text)
-		s.check(err)
+	_, err = conn.ExecContext(s.t.Context(), "BEGIN IMMEDIATE")
+	s.check(err)
+	return func() {
+		_, err := conn.ExecContext(s.t.Context(), "ROLLBACK")
+		s.check(errors.Join(err, conn.Close(), other.Close()))
 	}
-	do("BEGIN IMMEDIATE")
+}
+
+// A run waits for whoever else writes to the store.
+func TestARunWaitsForAnotherWriter(t *testing.T) {
+	s, before, after, _ := laterStudy(t)
+	release := s.holdStore()
 	p, _ := watch(t, s.reprocess(), func() bool { return isHeld(s) })
 	select {
 	case err := <-p.ended:
@@ -178,25 +184,25 @@ func TestAnotherWriter(t *testing.T) {
 	case <-time.After(500 * time.Millisecond):
 	}
 	s.untouched("while it waits", before)
-	do("ROLLBACK")
+	release()
 	if err := <-p.ended; err != nil {
 		t.Errorf("%v, %s", err, p.stderr.String())
 	}
 	s.finished("after it waited", after)
+}
+
+// A run does not wait for ever.
+func TestARunGivesUpOnAnotherWriter(t *testing.T) {
 	if !*allFaults {
-		t.Log("whether it gives up after half a minute is tried with -faults")
-		return
+		t.Skip("lasts half a minute; -faults tries it")
 	}
-	again()
-	conn.Close()
-	conn, err = other.Conn(t.Context())
-	s.check(err)
-	do("BEGIN IMMEDIATE")
+	s, before, after, _ := laterStudy(t)
+	release := s.holdStore()
 	start := time.Now()
 	s.failedToWriteOf("locked", s.reprocess(), s.store)
 	t.Logf("gave up after %v", time.Since(start))
-	do("ROLLBACK")
 	s.untouched("locked", before)
+	release()
 	mustRun(t, s.reprocess())
 	s.finished("unlocked", after)
 }

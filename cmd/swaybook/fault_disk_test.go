@@ -19,6 +19,7 @@ func laterStudy(t *testing.T) (s *faultStudy, before, after outcome, again func(
 	if testing.Short() {
 		t.Skip("runs a study many times")
 	}
+	t.Parallel()
 	s = newFaultStudy(t, t.TempDir())
 	toTheEnd(s)
 	saved := t.TempDir()
