@@ -3,6 +3,7 @@
 package main
 
 import (
+	"flag"
 	"fmt"
 	"os"
 	"os/exec"
@@ -11,6 +12,16 @@ import (
 	"syscall"
 	"testing"
 )
+
+var allFaults = flag.Bool("faults", false, "try every limit and wait out every timeout in the tests of faults, for some minutes")
+
+// thinned are the first, the middle and the last of cases unless all are to be tried.
+func thinned[T any](cases ...T) []T {
+	if *allFaults || len(cases) < 3 {
+		return cases
+	}
+	return []T{cases[0], cases[len(cases)/2], cases[len(cases)-1]}
+}
 
 // laterStudy is a study whose first run has ended and whose files and recipe have changed since,
 // with what an undisturbed second run leaves. again has it be so again.

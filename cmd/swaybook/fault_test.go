@@ -5,7 +5,6 @@ package main
 import (
 	"bytes"
 	"errors"
-	"flag"
 	"io/fs"
 	"maps"
 	"os"
@@ -18,16 +17,6 @@ import (
 	"swaybook/db"
 	"swaybook/pipeline/demo"
 )
-
-var allFaults = flag.Bool("faults", false, "try every limit and wait out every timeout in the tests of faults, for some minutes")
-
-// thinned are the first, the middle and the last of cases unless all are to be tried.
-func thinned[T any](cases ...T) []T {
-	if *allFaults || len(cases) < 3 {
-		return cases
-	}
-	return []T{cases[0], cases[len(cases)/2], cases[len(cases)-1]}
-}
 
 const faultStudyText = `name = "Wharves"
 store = "store/wharves.db"
@@ -153,18 +142,6 @@ func (s *faultStudy) ingest(recipe string) *exec.Cmd {
 }
 
 func (s *faultStudy) ingestStandard() *exec.Cmd { return s.ingest("standard") }
-
-// failing runs a command that must end with the code, and returns what it says.
-func (s *faultStudy) failing(cmd *exec.Cmd, code int) string {
-	s.t.Helper()
-	var stderr bytes.Buffer
-	cmd.Stderr = &stderr
-	exit, ok := errors.AsType[*exec.ExitError](cmd.Run())
-	if !ok || exit.ExitCode() != code {
-		s.t.Errorf("%v: %v, want exit code %d: %s", cmd.Args, exit, code, stderr.String())
-	}
-	return stderr.String()
-}
 
 // outcome is what a run leaves for others.
 type outcome struct {
