@@ -64,6 +64,45 @@ func TestUpgrade(t *testing.T) {
 	}
 }
 
+// TestUpgradeByIngest: a store of an earlier schema that is ingested into goes on with what it
+// holds: the same records, and from their stored samples the spectra that a new store of the
+// same files has, to the bit. What the files' headers state beside, and what is found in their
+// samples, is what the earlier program read of them: a study's run reads it anew.
+func TestUpgradeByIngest(t *testing.T) {
+	records, err := filepath.Abs(filepath.Join("..", "..", "testdata", "records"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	ingest := func(t *testing.T, path string, flags ...string) {
+		args := append([]string{"swaybook", "--store", path, "ingest", "--recipe", "as-delivered"}, append(flags, upgradeSources(records)...)...)
+		var stdout, stderr bytes.Buffer
+		if code := run(t.Context(), args, &stdout, &stderr); code != exitRejected {
+			t.Fatalf("ingest: exit code %d: %s%s", code, stdout.String(), stderr.String())
+		}
+	}
+	fresh := filepath.Join(t.TempDir(), "s.db")
+	ingest(t, fresh, "--periods", "0.1,0.2,0.5,1,2", "--dampings", "2%,5%")
+	const ordinates = `SELECT printf('%s %s %g %g %!.17g', record, component, damping, period_s, sd_m) FROM ordinate ORDER BY 1`
+	motions, want := motionsIn(t, fresh, "s.id = c.series_id"), textsIn(t, fresh, ordinates)
+	if len(want) != 200 {
+		t.Fatalf("%d ordinates of 12 components and 4 pairs, want 200", len(want))
+	}
+	for _, file := range []string{"schema-1", "schema-2", "schema-3"} {
+		t.Run(file, func(t *testing.T) {
+			path := filepath.Join(t.TempDir(), "s.db")
+			unpackStore(t, file, path)
+			ingest(t, path)
+			if got := motionsIn(t, path, "s.id = c.series_id"); !reflect.DeepEqual(got, motions) {
+				t.Errorf("components %v, of a new store %v", got, motions)
+			}
+			if got := textsIn(t, path, ordinates); !reflect.DeepEqual(got, want) {
+				t.Errorf("ordinates %v, of a new store %v", got, want)
+			}
+			verifyAll(t, path, "after an ingest")
+		})
+	}
+}
+
 // unpackStore puts a store of an earlier program at the path.
 func unpackStore(t *testing.T, name, path string) {
 	t.Helper()
@@ -87,14 +126,20 @@ func unpackStore(t *testing.T, name, path string) {
 
 // motionsIn are the components of a store of any schema, with the digests of their samples,
 // which join relates.
-func motionsIn(t *testing.T, path, join string) (out []string) {
+func motionsIn(t *testing.T, path, join string) []string {
+	t.Helper()
+	return textsIn(t, path, `SELECT r.code || ' ' || c.role || ' ' || s.sha256 FROM component c JOIN record r ON r.id = c.record_id JOIN series s ON `+join+` ORDER BY 1`)
+}
+
+// textsIn is the one column that a query gives.
+func textsIn(t *testing.T, path, query string) (out []string) {
 	t.Helper()
 	store, err := sql.Open("sqlite", "file:"+path+"?mode=ro")
 	if err != nil {
 		t.Fatal(err)
 	}
 	defer store.Close()
-	rows, err := store.Query(`SELECT r.code || ' ' || c.role || ' ' || s.sha256 FROM component c JOIN record r ON r.id = c.record_id JOIN series s ON ` + join + ` ORDER BY 1`)
+	rows, err := store.Query(query)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -126,12 +171,20 @@ func verifyAll(t *testing.T, path, when string) {
 	}
 }
 
+// upgradeSources are the files of which the earlier programs made their stores.
+func upgradeSources(records string) (out []string) {
+	for _, name := range []string{"at2/NWT_CDH000.AT2", "at2/NWT_CDH090.AT2", "at2/NWT_CDH-UP.AT2", "at2/damaged-truncated.AT2", "knet"} {
+		out = append(out, filepath.Join(records, filepath.FromSlash(name)))
+	}
+	return out
+}
+
 // upgradeRun makes the store that of the files of which the earlier programs made theirs.
 func upgradeRun(t *testing.T, path, records string) studyState {
 	t.Helper()
 	var sources []string
-	for _, name := range []string{"at2/NWT_CDH000.AT2", "at2/NWT_CDH090.AT2", "at2/NWT_CDH-UP.AT2", "at2/damaged-truncated.AT2", "knet"} {
-		sources = append(sources, fmt.Sprintf("'%s'", filepath.Join(records, filepath.FromSlash(name))))
+	for _, path := range upgradeSources(records) {
+		sources = append(sources, fmt.Sprintf("'%s'", path))
 	}
 	file := filepath.Join(filepath.Dir(path), "s.toml")
 	text := "name = 'Upgrade'\nstore = 's.db'\nsources = [" + strings.Join(sources, ", ") + "]\nrecipe = 'as-delivered'\nperiods = [0.1, 0.2, 0.5, 1, 2]\ndampings = ['2%', '5%']\nstate = 'state.json'\n"
