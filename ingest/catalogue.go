@@ -48,7 +48,7 @@ type Catalogue struct {
 	torn    sync.Map        // of tornRows: the first file by name
 	rows    []*catalogueRow // in order of precedence, weak first
 	exact   map[string][]int
-	globs   []int
+	globs   map[string][]int // by what stands before the first wildcard
 	joins   map[joinKey][]int
 }
 

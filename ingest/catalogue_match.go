@@ -20,9 +20,12 @@ const (
 	rankPath        // a file by path
 )
 
+// wildcards begin what is not literal in a pattern; no backslash is left in one.
+const wildcards = "*?["
+
 func (row *catalogueRow) rank() int {
 	switch {
-	case strings.ContainsAny(row.file, `*?[`):
+	case strings.ContainsAny(row.file, wildcards):
 		return rankGlob
 	case strings.ContainsAny(row.file, "/"+archive.Separator):
 		return rankPath
@@ -40,12 +43,13 @@ func (c *Catalogue) index() {
 	slices.SortStableFunc(c.rows, func(a, b *catalogueRow) int {
 		return cmp.Or(cmp.Compare(a.rank(), b.rank()), compareBool(a.component != "", b.component != ""), cmp.Compare(a.line, b.line))
 	})
-	c.exact = map[string][]int{}
+	c.exact, c.globs = map[string][]int{}, map[string][]int{}
 	c.joins = map[joinKey][]int{}
 	for i, row := range c.rows {
 		switch row.rank() {
 		case rankGlob:
-			c.globs = append(c.globs, i)
+			prefix := row.file[:strings.IndexAny(row.file, wildcards)]
+			c.globs[prefix] = append(c.globs[prefix], i)
 		case rankBase, rankPath:
 			c.exact[row.file] = append(c.exact[row.file], i)
 		default:
@@ -65,16 +69,22 @@ func compareBool(a, b bool) int {
 	return 1
 }
 
-// fileRows returns the rows whose file fits the relative path, weak first.
+// fileRows returns the rows whose file fits the relative path, weak first. A pattern is
+// held against the file only where it begins as one of its names does: a catalogue may
+// have as many patterns as there are records.
 func (c *Catalogue) fileRows(rel string) []*catalogueRow {
 	base, paths := namesOf(path.Clean(rel))
 	at := slices.Clone(c.exact[base])
 	for _, p := range paths {
 		at = append(at, c.exact[p]...)
 	}
-	for _, i := range c.globs {
-		if matchesFile(c.rows[i].file, base, paths) {
-			at = append(at, i)
+	for _, name := range append(paths, base) {
+		for n := range len(name) + 1 {
+			for _, i := range c.globs[name[:n]] {
+				if matchesFile(c.rows[i].file, base, paths) {
+					at = append(at, i)
+				}
+			}
 		}
 	}
 	return c.ordered(at)

@@ -261,6 +261,7 @@ func TestCatalogueMatching(t *testing.T) {
 		Orientation: Orientation{Axis: AxisHorizontal, AzimuthDeg: Known(35), Label: "35 Deg"}}
 	cases := map[string]bool{
 		"a.txt,,,,,x": true, "*.txt,,,,,x": true, "sub/a.txt,,,,,x": true, `sub\a.txt,,,,,x`: true, "./sub/a.txt,,,,,x": true, "*/a.txt,,,,,x": true, "[ab].txt,,,,,x": true,
+		"a.*,,,,,x": true, "a.t[x]t,,,,,x": true, "sub/?.txt,,,,,x": true, "su?/a.txt,,,,,x": true, "sub/a.txt*,,,,,x": true, "b.*,,,,,x": false, "su/?.txt,,,,,x": false, "sub/a.txt?,,,,,x": false,
 		"b.txt,,,,,x": false, "sub,,,,,x": false, "*/*/a.txt,,,,,x": false, "A.TXT,,,,,x": false, "*,,,,,x": true,
 		",,54730,,,x": true, ",,ce54730,,,x": true, ",,CE.54730,,,x": true, ",,54730,CE,,x": true, ",,54730,ce,,x": true, ",,54730,NC,,x": false, ",,5473,,,x": false,
 		",,54730,,35,x": true, ",,54730,,90,x": false, ",,54730,,UP,x": false, ",,54730,,35 DEG,x": true,
@@ -283,7 +284,7 @@ func TestCatalogueFilesInArchives(t *testing.T) {
 		deep, shallow bool
 	}{
 		{"x.EW", true, true}, {"*.EW", true, true}, {"[!x].EW", true, true}, {"dir/x.EW", true, false}, {"in/b.tar!dir/x.EW", true, false}, {deep, true, false},
-		{shallow, false, true}, {"a.zip!*", false, true}, {"sub/in/dir/x.EW", true, false}, {"sub/*/*/x.EW", true, false}, {"*/*!*/*!dir/*.EW", true, false},
+		{shallow, false, true}, {"a.zip!*", false, true}, {"x.*", true, true}, {"dir/x*", true, false}, {"in/b.tar!dir/?.EW", true, false}, {"sub/a.zip!in/*!dir/x.EW", true, false}, {"sub/in/d*/x.EW", true, false}, {"a.zip!y*", false, false}, {"sub/in/dir/x.EW", true, false}, {"sub/*/*/x.EW", true, false}, {"*/*!*/*!dir/*.EW", true, false},
 		{"in/dir/x.EW", false, false}, {"a.zip", false, false}, {"sub/a.zip", false, false}, {"b.tar", false, false}, {"*.zip", false, false},
 	} {
 		for rel, want := range map[string]bool{deep: tt.deep, shallow: tt.shallow} {
