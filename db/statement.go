@@ -99,14 +99,31 @@ func (s *Statement) isOfOneFile() bool {
 // now: of each attribute that it states, every other value that a row for the file or one
 // for codes gave. It returns what it forgot.
 func (t *Tx) Supersede(ctx context.Context, file string, now []Statement) ([]Statement, error) {
+	type topic struct {
+		Subject
+		attribute string
+	}
+	values := map[topic][]string{}
+	for _, s := range now {
+		of := topic{s.Subject, s.Attribute}
+		values[of] = append(values[of], s.Value)
+	}
 	var superseded []Statement
-	for _, of := range subjectsOf(now) {
-		held, err := t.Statements(ctx, of)
+	for of, stated := range values {
+		// Files of an event or a station may have thousands of rows, each with values of its
+		// own: these are passed over where they lie.
+		rows, err := t.tx.QueryContext(ctx, `SELECT subject, subject_id, attribute, stated_by, value, source FROM statement
+			WHERE subject = ? AND subject_id = ? AND attribute = ? AND stated_by = '`+ByCatalogue+`' AND source IN (?, '`+CodeRows+`')`,
+			of.Kind, of.ID, of.attribute, file)
 		if err != nil {
-			return nil, err
+			return nil, fmt.Errorf("read statements: %w", err)
+		}
+		held, err := collect(rows, statementFields)
+		if err != nil {
+			return nil, fmt.Errorf("read statements: %w", err)
 		}
 		for _, h := range held {
-			if h.By != ByCatalogue || h.Source != file && h.Source != CodeRows || !isSuperseded(&h, now) {
+			if slices.Contains(stated, h.Value) {
 				continue
 			}
 			if err := t.exec(ctx, `DELETE FROM statement WHERE subject = ? AND subject_id = ? AND attribute = ? AND stated_by = ? AND value = ?`,
@@ -117,32 +134,6 @@ func (t *Tx) Supersede(ctx context.Context, file string, now []Statement) ([]Sta
 		}
 	}
 	return superseded, nil
-}
-
-// isSuperseded reports whether other values of the attribute are stated now, and this one
-// is not.
-func isSuperseded(held *Statement, now []Statement) bool {
-	stated := false
-	for _, s := range now {
-		if s.Subject == held.Subject && s.Attribute == held.Attribute {
-			if s.Value == held.Value {
-				return false
-			}
-			stated = true
-		}
-	}
-	return stated
-}
-
-// subjectsOf returns the subjects of statements, each once.
-func subjectsOf(statements []Statement) []Subject {
-	var out []Subject
-	for _, s := range statements {
-		if !slices.Contains(out, s.Subject) {
-			out = append(out, s.Subject)
-		}
-	}
-	return out
 }
 
 // CopyStatements gives a subject what headers and metadata state of another of its
