@@ -53,6 +53,9 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 // they have stated of its earthquake before is no reason to take it for known.
 func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.HeldComponent, c ingest.Channel, path string) error {
 	key := db.RecordKey{ID: held.RecordID, EventID: held.Record.EventID, StationID: held.Record.StationID}
+	if w.opts.Hints.Metadata.IsEmpty() {
+		return w.settler.state(ctx, key, nil)
+	}
 	own, err := tx.Statements(ctx, db.Subject{Kind: db.SubjectEvent, ID: key.EventID})
 	if err != nil {
 		return err
@@ -75,7 +78,7 @@ func (w *writer) describeByMetadata(ctx context.Context, tx *db.Tx, held db.Held
 // withHeld are the events of the documents at hand and those whose waves came by documents
 // of former runs, by time.
 func withHeld(m *ingest.Metadata, held []db.Quake) []ingest.CatalogueEvent {
-	out := slices.Clone(m.Events())
+	out := slices.Clip(m.Events())
 	for i, h := range held {
 		if _, ok := m.Event(h.PublicID); ok || !h.Came || m.Withdraws(h.PublicID, h.Created) {
 			continue
@@ -83,6 +86,9 @@ func withHeld(m *ingest.Metadata, held []db.Quake) []ingest.CatalogueEvent {
 		e := ingest.CatalogueEvent{PublicID: h.PublicID, Created: h.Created, Event: quakeAccount(&held[i]).channel.Event}
 		e.ID = h.Code
 		out = append(out, e)
+	}
+	if len(out) == len(m.Events()) {
+		return out
 	}
 	slices.SortFunc(out, func(a, b ingest.CatalogueEvent) int {
 		return cmp.Or(a.Origin.Compare(b.Origin), cmp.Compare(a.PublicID, b.PublicID))
