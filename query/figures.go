@@ -3,7 +3,6 @@ package query
 import (
 	"fmt"
 	"slices"
-	"strconv"
 )
 
 // Figure is one figure of an answer, by which the answers of two runs are compared.
@@ -22,7 +21,7 @@ func figuresOf(out []Figure, of string, percents []float64, r *Reduction) []Figu
 		return out
 	}
 	for i, p := range percents {
-		out = append(out, Figure{of, "p" + strconv.FormatFloat(p, 'g', -1, 64), r.Percentiles[i]})
+		out = append(out, Figure{of, "p" + percentKey(p), r.Percentiles[i]})
 	}
 	return append(out, Figure{of, figureCount, float64(r.Count)})
 }

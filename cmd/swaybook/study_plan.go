@@ -285,7 +285,7 @@ func (p *planner) selections() {
 		err = errors.Join(append(wrong, err)...)
 		switch {
 		case err == nil:
-			p.plan.watched = append(p.plan.watched, product{path: chosen.Path(), name: chosen.Name, kind: study.Spectrum, selection: chosen.Name, settings: chosen.Settings, ask: ask})
+			p.plan.watched = append(p.plan.watched, product{path: chosen.Path(), ask: ask})
 		case !isUsed:
 			p.blame(err, chosen.Settings, chosen.Line, chosen.Path())
 		}
@@ -299,7 +299,7 @@ func (p *planner) products() {
 		c, wrong := flagContext(p.c, productCommands[described.Kind](), described.Settings)
 		ask, err := newQuestion[described.Kind](c)
 		p.blame(errors.Join(append(wrong, err)...), described.Settings, described.Line, described.Path())
-		out := product{path: described.Path(), asked: asked, name: described.Name, kind: described.Kind, selection: described.Selection, settings: described.Settings, ask: ask}
+		out := product{path: described.Path(), asked: asked, ask: ask}
 		for _, f := range described.Files {
 			out.files = append(out.files, outputFile{f.Value, fileFormats[f.Format]})
 		}

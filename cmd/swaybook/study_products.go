@@ -14,14 +14,10 @@ import (
 
 // product is a question of a study, ready to be asked.
 type product struct {
-	path      string // the table that describes it: of a selection that is watched, this
-	asked     string // digest of the question, see askedBy; of what is written only
-	name      string
-	kind      study.Kind
-	selection string // "" where it names none
-	settings  []study.Setting
-	ask       asker
-	files     []outputFile // none of a product that is only watched
+	path  string // the table that describes it: of a selection that is watched, this
+	asked string // digest of the question, see askedBy; of what is written only
+	ask   asker
+	files []outputFile // none of a product that is only watched
 }
 
 // outputFile is where an answer is written.

@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
@@ -67,8 +66,8 @@ func newVerifyOptions(c *cli.Context) (o verifyOptions, err error) {
 	if n := c.Int("sample"); n < 0 {
 		return o, usagef("--sample %d: want 0 or more", n)
 	}
-	if n := c.Int("workers"); c.IsSet("workers") && (n < 1 || n > maxWorkers) {
-		return o, usagef("--workers %d: want 1 to %d", n, maxWorkers)
+	if err := checkWorkers(c); err != nil {
+		return o, err
 	}
 	logger, err := newLogger(c)
 	if err != nil {
@@ -110,7 +109,7 @@ func runVerify(ctx context.Context, o verifyOptions, w io.Writer) error {
 	}
 	report := newVerifyReport(o, found, time.Since(started))
 	if o.json {
-		err = report.writeJSON(w)
+		err = writeJSON(w, report)
 	} else {
 		err = report.write(w)
 	}
@@ -144,13 +143,6 @@ func newVerifyReport(o verifyOptions, v pipeline.Verification, took time.Duratio
 		r.Seed = &o.pipeline.Seed
 	}
 	return r
-}
-
-func (r verifyReport) writeJSON(w io.Writer) error {
-	e := json.NewEncoder(w)
-	e.SetEscapeHTML(false)
-	e.SetIndent("", "  ")
-	return e.Encode(r)
 }
 
 func (r verifyReport) write(w io.Writer) error {

@@ -94,7 +94,7 @@ func (f *frame) axes(withX bool) {
 	}
 }
 
-// inside draws within the frame only.
+// curve draws a curve within the frame only.
 func (f *frame) curve(style draw.LineStyle, xs, ys []float64) {
 	for _, piece := range f.lines(xs, ys) {
 		f.StrokeLines(style, f.ClipLinesXY(piece)...)

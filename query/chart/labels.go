@@ -1,6 +1,7 @@
 package chart
 
 import (
+	"cmp"
 	"slices"
 
 	"gonum.org/v1/plot/vg"
@@ -20,15 +21,7 @@ const labelStep = labelSize + 2
 // drawLabels writes the labels beside the frame, in the order of their curves' ends, as near
 // to these as they find room.
 func drawLabels(f *frame, labels []label) {
-	slices.SortStableFunc(labels, func(a, b label) int {
-		switch {
-		case a.from.Y < b.from.Y:
-			return -1
-		case a.from.Y > b.from.Y:
-			return 1
-		}
-		return 0
-	})
+	slices.SortStableFunc(labels, func(a, b label) int { return cmp.Compare(a.from.Y, b.from.Y) })
 	wanted := make([]vg.Length, len(labels))
 	for i, l := range labels {
 		wanted[i] = l.from.Y
