@@ -19,12 +19,14 @@ var layers = map[string][]string{
 	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition", "pipeline/signal", "pipeline/intensity", "pipeline/quality"}, // the way in
 	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                                                                             // invents files, knows nothing of readers
 	"db":                 {"migrations"},                                                                                                                                                                      // the only SQL
-	"pipeline/condition": {"pipeline/signal"},                                                                                                                                                                 // the steps of recipes
+	"pipeline/condition": {"pipeline/signal", "pipeline/internal/elementary"},                                                                                                                                 // the steps of recipes
 	"pipeline/beside":    {},
-	"pipeline/study":     {"ingest/tomlfile"},                                                                                                                                                     // lines of keys
-	"pipeline/intensity": {"pipeline/signal"},                                                                                                                                                     // Fourier amplitudes
-	"pipeline/quality":   {"pipeline/signal"},                                                                                                                                                     // means and integrals
-	"pipeline/spectrum":  {"pipeline/internal/kernel"},                                                                                                                                            // the loops behind the solver
+	"pipeline/study":     {"ingest/tomlfile"},                                 // lines of keys
+	"pipeline/intensity": {"pipeline/signal"},                                 // Fourier amplitudes
+	"pipeline/quality":   {"pipeline/signal", "pipeline/internal/elementary"}, // means and integrals
+	"pipeline/likeness":  {"pipeline/internal/elementary"},
+	"pipeline/signal":    {"pipeline/internal/elementary"},
+	"pipeline/spectrum":  {"pipeline/internal/kernel", "pipeline/internal/elementary"},                                                                                                            // the loops behind the solver
 	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "query/chart", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"}, // the way out; never pipeline itself
 	"query/design":       {"query/stats", "ingest/tomlfile"},                                                                                                                                      // logarithms of the same bits everywhere; lines of keys
 	"query/mixed":        {"query/stats"},                                                                                                                                                         // logarithms that are the same everywhere

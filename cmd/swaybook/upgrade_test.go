@@ -33,7 +33,7 @@ func TestUpgrade(t *testing.T) {
 	}{
 		{"schema-1", "1 78e3f25d42eefd3662f2bbb09b5f9435bd48e2ea72b28bdda55dbbe568c47102", 12},
 		{"schema-2", "1 1ad9ce20139c94c902f91ed9042b88f1c0c0253dbc5ca424c4c3e341e8496a26", 12},
-		{"schema-3", "1 6a6d80b4d68b68e1b70b26dfb0b8590bb73e8e4779bd21ecc02f5a224a0b493b", 0},
+		{"schema-3", "1 6a6d80b4d68b68e1b70b26dfb0b8590bb73e8e4779bd21ecc02f5a224a0b493b", 12},
 	} {
 		t.Run(c.file, func(t *testing.T) {
 			path := filepath.Join(t.TempDir(), "s.db")

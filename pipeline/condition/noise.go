@@ -3,6 +3,7 @@ package condition
 import (
 	"math"
 
+	"swaybook/pipeline/internal/elementary"
 	"swaybook/pipeline/signal"
 )
 
@@ -43,9 +44,10 @@ func (w *work) ratios() (r ratios) {
 		shortestS = min(shortestS, w.seconds(n.parts[0]))
 	}
 	fromHz := min(max(leastCornerHz, 1/shortestS), nyquist/2)
-	steps := int(math.Ceil(cornersADecade * math.Log10(nyquist/fromHz)))
+	span := elementary.Log(nyquist / fromHz)
+	steps := int(math.Ceil(cornersADecade / math.Ln10 * span))
 	for k := range steps + 1 {
-		r.frequencyHz = append(r.frequencyHz, fromHz*math.Pow(nyquist/fromHz, float64(k)/float64(steps)))
+		r.frequencyHz = append(r.frequencyHz, fromHz*elementary.Exp(span*float64(k)/float64(steps)))
 	}
 	motion := signal.PowerOf(x[n.motion.from:to], w.StepS).Smooth(r.frequencyHz, smoothing)
 	noise := w.noisePower(n.parts, r.frequencyHz)

@@ -14,9 +14,6 @@ const (
 	// leastTailS is the shortest part behind the motion in s that does: a shorter one has as
 	// much of its coda as of noise (common practice).
 	leastTailS = 5.0
-	// noiseRise is the power of the period with which the power of noise is taken to rise at
-	// periods longer than the part that tells it: that of flicker noise (common practice).
-	noiseRise = 1.0
 	// hintBand times the lowest frequency of which a part holds a cycle is the highest one
 	// from which its level is taken.
 	hintBand = 4.0
@@ -71,7 +68,9 @@ func (w *work) noisePower(parts []part, frequencyHz []float64) []float64 {
 		level := power.Smooth([]float64{middleHz}, math.Sqrt(hintBand))[0]
 		for k, smooth := range power.Smooth(frequencyHz, smoothing) {
 			if f := frequencyHz[k]; f < leastHz {
-				smooth = level * math.Pow(middleHz/f, noiseRise)
+				// At periods longer than the part that tells it, the power of noise is taken to
+				// rise with the period, as that of flicker noise does (common practice).
+				smooth = level * middleHz / f
 			}
 			out[k] = max(out[k], smooth)
 		}

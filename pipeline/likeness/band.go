@@ -1,6 +1,9 @@
 package likeness
 
-import "math"
+import (
+	"math"
+	"swaybook/pipeline/internal/elementary"
+)
 
 // What processing takes from a motion, such as the drift of its baseline and noise,
 // is in one version and not in another. Motions are therefore also compared between
@@ -41,7 +44,7 @@ type section struct{ b0, b1, a1, a2, gain float64 }
 // lowPass is the Butterworth filter of second order by the bilinear transform with
 // the corner, in cycles a sample, prewarped.
 func lowPass(corner float64) section {
-	w := math.Tan(math.Pi * corner)
+	w := elementary.TanPi(corner)
 	a0 := 1 + float64(math.Sqrt2*w) + float64(w*w)
 	b := float64(w*w) / a0
 	return section{b0: b, b1: 2 * b, a1: 2 * (float64(w*w) - 1) / a0, a2: (1 - float64(math.Sqrt2*w) + float64(w*w)) / a0, gain: 1}
@@ -50,7 +53,7 @@ func lowPass(corner float64) section {
 // highPass is the filter beside lowPass that passes what lies above the corner.
 func highPass(corner float64) section {
 	s := lowPass(corner)
-	w := math.Tan(math.Pi * corner)
+	w := elementary.TanPi(corner)
 	s.b0 = 1 / (1 + float64(math.Sqrt2*w) + float64(w*w))
 	s.b1, s.gain = -2*s.b0, 0
 	return s

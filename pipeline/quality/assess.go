@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"swaybook/pipeline/internal/elementary"
 	"swaybook/pipeline/signal"
 )
 
@@ -137,7 +138,7 @@ func (a *assessment) levels() {
 	}
 	before, after := levelOf(first, a.stepS), levelOf(a.x[n-n/10:], a.stepS)
 	step := math.Abs(after.mean - before.mean)
-	if step > max(stepShare*a.peak, levelErrors*math.Hypot(before.deviation, after.deviation)) {
+	if step > max(stepShare*a.peak, levelErrors*elementary.Hypot(before.deviation, after.deviation)) {
 		a.add(FlagBaselineStep, step/a.peak, stepShare, "the level changes by %.2g of PGA from beginning to end", step/a.peak)
 	}
 }

@@ -3,7 +3,8 @@ package signal
 import (
 	"fmt"
 	"math"
-	"math/cmplx"
+
+	"swaybook/pipeline/internal/elementary"
 )
 
 // section is one recursive filter of second order,
@@ -53,10 +54,10 @@ func design(order int, cornerHz, stepS float64, high bool) (Filter, error) {
 	if err := checkDesign(order, cornerHz, stepS); err != nil {
 		return Filter{}, err
 	}
-	w := math.Tan(math.Pi * cornerHz * stepS)
+	w := elementary.TanPi(cornerHz * stepS)
 	f := Filter{order: order, cornerHz: cornerHz}
 	for k := range order / 2 {
-		q := math.Sin(math.Pi * (2*float64(k) + 1) / (2 * float64(order)))
+		q, _ := elementary.SincosPi(float64(2*k+1) / float64(2*order))
 		f.sections = append(f.sections, second(w, q, high))
 	}
 	if order%2 == 1 {
@@ -94,18 +95,18 @@ func BandPass(order int, lowHz, highHz, stepS float64) (Filter, error) {
 			return Filter{}, err
 		}
 	}
-	w1, w2 := math.Tan(math.Pi*lowHz*stepS), math.Tan(math.Pi*highHz*stepS)
+	w1, w2 := elementary.TanPi(lowHz*stepS), elementary.TanPi(highHz*stepS)
 	band, middle := w2-w1, float64(w1*w2)
 	f := Filter{order: order, cornerHz: lowHz}
 	for k := range order / 2 {
-		sin, cos := math.Sincos(math.Pi * (2*float64(k) + 1) / (2 * float64(order)))
+		sin, cos := elementary.SincosPi(float64(2*k+1) / float64(2*order))
 		half := complex(-float64(float64(sin*band)/2), float64(float64(cos*band)/2))
 		far := half + farRoot(half, middle)
-		near := complex(middle, 0) / far // the difference would lose digits
-		for _, root := range []complex128{near, far} {
-			re, im := real(root), imag(root)
-			f.sections = append(f.sections, between(band, float64(-2*re), float64(re*re)+float64(im*im)))
-		}
+		square := squareOf(far)
+		// The near root is middle/far, since the difference would lose digits.
+		f.sections = append(f.sections,
+			between(band, float64(-2*real(far))*middle/square, float64(middle*middle)/square),
+			between(band, float64(-2*real(far)), square))
 	}
 	if order%2 == 1 {
 		f.sections = append(f.sections, between(band, band, middle))
@@ -116,11 +117,28 @@ func BandPass(order int, lowHz, highHz, stepS float64) (Filter, error) {
 // farRoot is that of √(half² - middle) which is on the side of half.
 func farRoot(half complex128, middle float64) complex128 {
 	re, im := real(half), imag(half)
-	root := cmplx.Sqrt(complex(float64(re*re)-float64(im*im)-middle, float64(2*re*im)))
-	if float64(real(root)*re)+float64(imag(root)*im) < 0 {
-		return -root
+	re, im = root(float64(re*re)-float64(im*im)-middle, float64(2*re*im))
+	if float64(re*real(half))+float64(im*imag(half)) < 0 {
+		re, im = -re, -im
 	}
-	return root
+	return complex(re, im)
+}
+
+// root is the square root of re + im·i that lies on the side of positive numbers.
+func root(re, im float64) (float64, float64) {
+	large := math.Sqrt((elementary.Hypot(re, im) + math.Abs(re)) / 2)
+	if large == 0 {
+		return 0, 0
+	}
+	small := math.Abs(im) / (2 * large)
+	if re < 0 {
+		large, small = small, large
+	}
+	return large, math.Copysign(small, im)
+}
+
+func squareOf(a complex128) float64 {
+	return float64(real(a)*real(a)) + float64(imag(a)*imag(a))
 }
 
 // between is band·s/(s² + c·s + d).

@@ -2,7 +2,8 @@ package signal
 
 import (
 	"math"
-	"math/cmplx"
+
+	"swaybook/pipeline/internal/elementary"
 )
 
 // Power is the power of a motion by frequency, one-sided: Density[k] at k·StepHz, in
@@ -32,13 +33,10 @@ func PowerOf(x []float64, stepS float64) Power {
 	coefficients := Transform(tapered, n)
 	p := Power{Density: make([]float64, len(coefficients)), StepHz: 1 / (float64(n) * stepS)}
 	for k, c := range coefficients {
-		a := cmplx.Abs(c)
-		p.Density[k] = 2 * float64(a*a) * stepS / kept
+		p.Density[k] = 2 * squareOf(c) * stepS / kept
 	}
 	p.Density[0] /= 2
-	if n%2 == 0 {
-		p.Density[n/2] /= 2
-	}
+	p.Density[n/2] /= 2
 	return p
 }
 
@@ -95,7 +93,7 @@ func Onset(x []float64) int {
 		if !(before[k] > 0) || !(after[k] > 0) {
 			continue
 		}
-		score := float64(float64(k)*math.Log(before[k])) + float64(float64(m-k)*math.Log(after[k]))
+		score := float64(float64(k)*elementary.Log(before[k])) + float64(float64(m-k)*elementary.Log(after[k]))
 		if score < least {
 			best, least = k, score
 		}

@@ -1,6 +1,6 @@
 package signal
 
-import "math"
+import "swaybook/pipeline/internal/elementary"
 
 // Taper multiplies the first and the last samples of x by half a cosine bell,
 //
@@ -24,6 +24,6 @@ func Taper(x []float64, first, last int) {
 }
 
 func bell(i, n int) float64 {
-	s := math.Sin(math.Pi / 2 * (float64(i) + 0.5) / float64(n))
+	s, _ := elementary.SincosPi((float64(i) + 0.5) / float64(2*n))
 	return s * s
 }

@@ -49,4 +49,4 @@ package spectrum
 
 // Version names the arithmetic of this package. It is stored with results and
 // changes whenever the bits of a result may change.
-const Version = "4"
+const Version = "5"

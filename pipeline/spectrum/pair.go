@@ -4,6 +4,8 @@ import (
 	"fmt"
 	"math"
 	"time"
+
+	"swaybook/pipeline/internal/elementary"
 )
 
 // rightAngleDeg is how far from a right angle the difference of two azimuths may
@@ -151,7 +153,7 @@ func turnedUpright(first, second []float64, betweenDeg float64) []float64 {
 	return out
 }
 
-func sinCosBetween(deg float64) (sin, cos float64) { return math.Sincos(deg * math.Pi / 180) }
+func sinCosBetween(deg float64) (sin, cos float64) { return elementary.SincosPi(deg / 180) }
 
 // Peaks is RotDPeaks of the pair, but that PGV and PGD are taken where both
 // components have samples, unless that is nowhere, as where a recipe keeps a part of

@@ -64,7 +64,7 @@ for low, high in [(1.0, 20.0), (0.1, 25.0), (4.0, 5.0)]:
 t = np.arange(N, dtype=float)
 trends = [{"degree": d, "rest": (x - np.polyval(np.polyfit(t, x, d), t)).tolist()} for d in (0, 1, 2)]
 resampled = []
-for n, length in [(250, 250), (247, 250), (225, 225), (224, 225)]:
+for n, length in [(250, 250), (247, 250), (225, 240), (240, 240)]:
     padded = np.concatenate([x[:n], np.zeros(length - n)])
     for factor in (2, 5):
         resampled.append({"n": n, "factor": factor, "samples": signal.resample(padded, length * factor)[: n * factor].tolist()})
