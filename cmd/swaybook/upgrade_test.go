@@ -30,15 +30,17 @@ func TestUpgrade(t *testing.T) {
 		file       string
 		digest     string // of what was published, once migrated; made by this program
 		recomputed int    // components
+		series     string // what samples are of which component, then
 	}{
-		{"schema-1", "1 78e3f25d42eefd3662f2bbb09b5f9435bd48e2ea72b28bdda55dbbe568c47102", 12},
-		{"schema-2", "1 1ad9ce20139c94c902f91ed9042b88f1c0c0253dbc5ca424c4c3e341e8496a26", 12},
-		{"schema-3", "1 6a6d80b4d68b68e1b70b26dfb0b8590bb73e8e4779bd21ecc02f5a224a0b493b", 12},
+		{"schema-1", "1 78e3f25d42eefd3662f2bbb09b5f9435bd48e2ea72b28bdda55dbbe568c47102", 12, samplesOf},
+		{"schema-2", "1 1ad9ce20139c94c902f91ed9042b88f1c0c0253dbc5ca424c4c3e341e8496a26", 12, samplesOf},
+		{"schema-3", "1 6a6d80b4d68b68e1b70b26dfb0b8590bb73e8e4779bd21ecc02f5a224a0b493b", 12, samplesOf},
+		{"schema-17", "1 89b8a6d628d11df05153f88253369dd15287d118f08d55609e787c64d620691e", 0, seriesOf},
 	} {
 		t.Run(c.file, func(t *testing.T) {
 			path := filepath.Join(t.TempDir(), "s.db")
 			unpackStore(t, c.file, path)
-			before := motionsIn(t, path, "s.component_id = c.id")
+			before := motionsIn(t, path, c.series)
 			store, err := db.Create(t.Context(), path, db.AnySolver)
 			if err == nil {
 				err = store.Close()
@@ -46,7 +48,7 @@ func TestUpgrade(t *testing.T) {
 			if err != nil {
 				t.Fatal(err)
 			}
-			if after := motionsIn(t, path, "s.id = c.series_id"); len(before) != 12 || !reflect.DeepEqual(after, before) {
+			if after := motionsIn(t, path, seriesOf); len(before) != 12 || !reflect.DeepEqual(after, before) {
 				t.Errorf("components %v, before %v", after, before)
 			}
 			if got := digestOf(t, path); got != c.digest {
@@ -83,16 +85,16 @@ func TestUpgradeByIngest(t *testing.T) {
 	fresh := filepath.Join(t.TempDir(), "s.db")
 	ingest(t, fresh, "--periods", "0.1,0.2,0.5,1,2", "--dampings", "2%,5%")
 	const ordinates = `SELECT printf('%s %s %g %g %!.17g', record, component, damping, period_s, sd_m) FROM ordinate ORDER BY 1`
-	motions, want := motionsIn(t, fresh, "s.id = c.series_id"), textsIn(t, fresh, ordinates)
+	motions, want := motionsIn(t, fresh, seriesOf), textsIn(t, fresh, ordinates)
 	if len(want) != 200 {
 		t.Fatalf("%d ordinates of 12 components and 4 pairs, want 200", len(want))
 	}
-	for _, file := range []string{"schema-1", "schema-2", "schema-3"} {
+	for _, file := range []string{"schema-1", "schema-2", "schema-3", "schema-17"} {
 		t.Run(file, func(t *testing.T) {
 			path := filepath.Join(t.TempDir(), "s.db")
 			unpackStore(t, file, path)
 			ingest(t, path)
-			if got := motionsIn(t, path, "s.id = c.series_id"); !reflect.DeepEqual(got, motions) {
+			if got := motionsIn(t, path, seriesOf); !reflect.DeepEqual(got, motions) {
 				t.Errorf("components %v, of a new store %v", got, motions)
 			}
 			if got := textsIn(t, path, ordinates); !reflect.DeepEqual(got, want) {
@@ -123,6 +125,9 @@ func unpackStore(t *testing.T, name, path string) {
 		t.Fatal(err)
 	}
 }
+
+// How samples are joined to components, in the first schemas and since.
+const samplesOf, seriesOf = "s.component_id = c.id", "s.id = c.series_id"
 
 // motionsIn are the components of a store of any schema, with the digests of their samples,
 // which join relates.
