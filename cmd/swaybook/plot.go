@@ -54,9 +54,6 @@ func newPlotOptions(o *plotOptions, c *cli.Context) error {
 	default:
 		return ofFlag("plot", usagef("--plot %q: want a file that ends in .svg or .png", o.file))
 	}
-	if info, err := os.Stat(o.file); err == nil && !info.Mode().IsRegular() {
-		return ofFlag("plot", usagef("--plot %s: what is there is no file", o.file))
-	}
 	if o.axes = cmp.Or(c.String("axes"), axesLog); !slices.Contains(allAxes, o.axes) {
 		return ofFlag("axes", usagef("--axes %q: want %s", o.axes, strings.Join(allAxes, ", ")))
 	}
@@ -66,19 +63,29 @@ func newPlotOptions(o *plotOptions, c *cli.Context) error {
 	return parseInto(&o.marks, c, "mark", query.ParseMarks)
 }
 
-// of is the chart of an answer.
-func (o *plotOptions) of(a *query.SpectrumAnswer, units query.Units) chart.Chart {
-	if o.axes == axesFourWay {
-		return a.FourWay(units, o.marks)
-	}
-	return a.Chart(units, o.marks, o.axes == axesLinear)
+// figure is a chart in the size that suits it.
+type figure struct {
+	chart.Chart
+	size chart.Size
 }
 
-// write draws a chart; the file is there whole, or as it was.
-func (o *plotOptions) write(drawn chart.Chart) error {
-	size := chart.Half
+// of is the figure of an answer.
+func (o *plotOptions) of(a *query.SpectrumAnswer, units query.Units) figure {
 	if o.axes == axesFourWay {
-		size = chart.Square
+		return figure{a.FourWay(units, o.marks), chart.Square}
 	}
-	return beside.WriteFile(o.file, func(w io.Writer) error { return chart.Write(w, o.format, size, drawn) })
+	return figure{a.Chart(units, o.marks, o.axes == axesLinear), chart.Half}
+}
+
+// check looks whether a file may take the place.
+func (o *plotOptions) check() error {
+	if info, err := os.Stat(o.file); err == nil && !info.Mode().IsRegular() {
+		return ofFlag("plot", usagef("--plot %s: what is there is no file", o.file))
+	}
+	return nil
+}
+
+// write draws a figure; the file is there whole, or as it was.
+func (o *plotOptions) write(drawn figure) error {
+	return beside.WriteFile(o.file, func(w io.Writer) error { return chart.Write(w, o.format, drawn.size, drawn.Chart) })
 }

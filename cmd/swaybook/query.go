@@ -128,7 +128,7 @@ type spectrumOptions struct {
 func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 	q := &o.question
 	q.Selection, err = newSelection(c, query.ParseComponent, query.ParseSiting)
-	return o, errors.Join(err, noArguments(c),
+	err = errors.Join(err, noArguments(c),
 		parseInto(&q.Damping, c, "damping", query.ParseDamping),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
 		parseInto(&q.By, c, "by", query.ParseGrouping),
@@ -141,6 +141,11 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
 		newPlotOptions(&o.plot, c),
 	)
+	q.Each = o.plot.file != ""
+	if o.plot.axes == axesFourWay {
+		q.Measure = query.MeasurePSV
+	}
+	return o, err
 }
 
 // newExtras reads the flags of further figures.
@@ -189,9 +194,8 @@ func writeAnswer(answer statistics, format query.Format, units query.Units, w, s
 }
 
 func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, stderr io.Writer) error {
-	o.question.Each = o.plot.file != ""
-	if o.plot.axes == axesFourWay {
-		o.question.Measure = query.MeasurePSV
+	if err := o.plot.check(); err != nil {
+		return err
 	}
 	answer, err := o.question.Ask(ctx, store)
 	if err != nil {

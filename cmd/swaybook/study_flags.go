@@ -22,12 +22,15 @@ var choiceKeys = []string{"include-duplicates", "include-unknown-directions", "i
 // fileKeys are the flags whose values are files, and listKeys those that take a list.
 var (
 	fileKeys = []string{"catalogue", "metadata", "layout", "recipe", "design", "structures"}
-	listKeys = []string{"near", "siting", "periods", "dampings", "percentiles", "show"}
+	listKeys = []string{"near", "siting", "periods", "dampings", "percentiles", "show", "mark"}
 )
 
 // noKeys are the flags of questions that a study may not set: it has its own way to say
-// where answers go, and asks for what is published. Figures are not among them yet.
-var noKeys = []string{"format", asOf, "plot", "axes", "mark"}
+// where answers go, and asks for what is published.
+var noKeys = []string{"format", asOf, "plot"}
+
+// figureKeys are the flags of figures.
+var figureKeys = []string{"axes", "mark"}
 
 // productCommands are the commands whose questions a study may ask.
 var productCommands = map[study.Kind]func() *cli.Command{

@@ -56,13 +56,13 @@ func (o *outputs) ask(ctx context.Context, p *product, at moment) (reply, error)
 // prepare writes a product's files beside those that are there.
 func (o *outputs) prepare(p *product, r reply) error {
 	for _, f := range p.files {
-		if r.empty != nil {
+		if r.empty != nil || f.format.IsFigure() && !r.answer.HasFigure() {
 			if err := o.set.Remove(f.path); err != nil {
 				return fmt.Errorf("%s: %w", p.path, err)
 			}
 			continue
 		}
-		if err := o.set.Write(f.path, func(w io.Writer) error { return r.answer.Write(w, f.format) }); err != nil {
+		if err := o.set.Write(f.path, func(w io.Writer) error { return f.write(r.answer, w) }); err != nil {
 			return fmt.Errorf("%s: %w", p.path, err)
 		}
 	}

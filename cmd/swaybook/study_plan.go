@@ -292,16 +292,40 @@ func (p *planner) selections() {
 	}
 }
 
+// withFigures are the settings of a product with that which has its command draw, where it is
+// written as a figure.
+func (p *planner) withFigures(described *study.Product) []study.Setting {
+	settings := slices.Clone(described.Settings)
+	command := productCommands[described.Kind]()
+	for _, f := range described.Files {
+		if !f.Format.IsFigure() {
+			continue
+		}
+		if !slices.ContainsFunc(command.Flags, func(f cli.Flag) bool { return f.Names()[0] == "plot" }) {
+			p.fail(f.Line, described.Path()+".files", usagef("%s: there is no figure of %s", filepath.Base(f.Value), described.Kind))
+			return settings
+		}
+		return append(settings, study.Setting{Key: "plot", Text: f.Text})
+	}
+	return slices.DeleteFunc(settings, func(s study.Setting) bool {
+		isOfFigure := slices.Contains(figureKeys, s.Key)
+		if isOfFigure {
+			p.fail(s.Line, described.Path()+"."+s.Key, usagef("goes with a figure: a file that ends in .svg or .png"))
+		}
+		return isOfFigure
+	})
+}
+
 // products makes the questions of the products.
 func (p *planner) products() {
 	for _, described := range p.plan.study.Products {
 		asked := askedBy(&described)
-		c, wrong := flagContext(p.c, productCommands[described.Kind](), described.Settings)
+		c, wrong := flagContext(p.c, productCommands[described.Kind](), p.withFigures(&described))
 		ask, err := newQuestion[described.Kind](c)
 		p.blame(errors.Join(append(wrong, err)...), described.Settings, described.Line, described.Path())
 		out := product{path: described.Path(), asked: asked, ask: ask}
 		for _, f := range described.Files {
-			out.files = append(out.files, outputFile{f.Value, fileFormats[f.Format]})
+			out.files = append(out.files, outputFile{f.Value, f.Format})
 		}
 		p.plan.products = append(p.plan.products, out)
 	}

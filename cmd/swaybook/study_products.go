@@ -10,6 +10,7 @@ import (
 	"swaybook/db"
 	"swaybook/pipeline/study"
 	"swaybook/query"
+	"swaybook/query/chart"
 )
 
 // product is a question of a study, ready to be asked.
@@ -23,10 +24,18 @@ type product struct {
 // outputFile is where an answer is written.
 type outputFile struct {
 	path   string
-	format query.Format
+	format study.Format
 }
 
-// fileFormats are the formats by the extensions of files.
+// write writes an answer in the format of the file.
+func (f *outputFile) write(a answer, w io.Writer) error {
+	if f.format.IsFigure() {
+		return a.Draw(w, chart.Format(f.format))
+	}
+	return a.Write(w, fileFormats[f.format])
+}
+
+// fileFormats are the formats of answers, other than figures, by the extensions of files.
 var fileFormats = map[study.Format]query.Format{
 	study.CSV: query.FormatCSV, study.JSON: query.FormatJSON, study.TXT: query.FormatTable,
 }
@@ -46,16 +55,34 @@ type asker func(ctx context.Context, store *db.Store, at moment) (answer, error)
 type answer interface {
 	query.Compared
 	Write(io.Writer, query.Format) error
+	// HasFigure reports whether there is something to draw.
+	HasFigure() bool
+	Draw(io.Writer, chart.Format) error
 	Remarks() string
 }
 
 // inUnits is an answer of statistics in the units that were asked for.
 type inUnits struct {
 	statistics
-	units query.Units
+	units  query.Units
+	figure func() figure // nil for none
 }
 
 func (a inUnits) Write(w io.Writer, f query.Format) error { return a.statistics.Write(w, f, a.units) }
+
+func (a inUnits) Draw(w io.Writer, f chart.Format) error {
+	if a.figure == nil {
+		return errNoFigure
+	}
+	drawn := a.figure()
+	return chart.Write(w, f, drawn.size, drawn.Chart)
+}
+
+// HasFigure reports whether any value can be drawn. Drawing says that without a file.
+func (a inUnits) HasFigure() bool { return !errors.Is(a.Draw(io.Discard, chart.SVG), chart.ErrNothing) }
+
+// errNoFigure does not come up, since a study's reader refuses figures where there are none.
+var errNoFigure = errors.New("the answer has no figure")
 
 // list is an answer of records.
 type list struct {
@@ -72,6 +99,10 @@ func (unmeasured) Motions() []query.Motion { return nil }
 
 func (l list) Remarks() string { return l.remarks }
 
+func (l list) HasFigure() bool { return false }
+
+func (l list) Draw(io.Writer, chart.Format) error { return errNoFigure }
+
 // newQuestion reads the flags of a command into its question, by kind.
 var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 	study.Spectrum: newSpectrumAsker,
@@ -79,14 +110,18 @@ var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 	study.Records:  newRecordsAsker,
 }
 
-// askIn asks for statistics in units.
-func askIn[A statistics](units query.Units, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
+// askIn asks for statistics in units, which a figure shows where there is one.
+func askIn[A statistics](units query.Units, drawn func(A, query.Units) figure, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
 	return func(ctx context.Context, store *db.Store, at moment) (answer, error) {
 		a, err := ask(ctx, store, at)
 		if err != nil {
 			return nil, err
 		}
-		return inUnits{a, units}, nil
+		out := inUnits{statistics: a, units: units}
+		if drawn != nil {
+			out.figure = func() figure { return drawn(a, units) }
+		}
+		return out, nil
 	}
 }
 
@@ -97,7 +132,7 @@ func newSpectrumAsker(c *cli.Context) (asker, error) {
 		q.AsOf, q.AnySolver = at.run, at.anySolver
 		return q.Ask(ctx, store)
 	}
-	return askIn(o.units, ask), validated(err, o.question.Validate, o.question.Selection)
+	return askIn(o.units, o.plot.of, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newDemandAsker(c *cli.Context) (asker, error) {
@@ -110,7 +145,7 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 		q.AsOf, q.AnySolver = at.run, at.anySolver
 		return q.Ask(ctx, store)
 	}
-	return askIn(o.units, ask), validated(err, o.question.Validate, o.question.Selection)
+	return askIn(o.units, nil, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newPortfolioAsker(c *cli.Context) (asker, error) {
@@ -120,7 +155,7 @@ func newPortfolioAsker(c *cli.Context) (asker, error) {
 		asked.question.AsOf, asked.question.AnySolver = at.run, at.anySolver
 		return asked.ask(ctx, store)
 	}
-	return askIn(o.units, ask), validated(err, o.validate, o.question.Selection)
+	return askIn(o.units, nil, ask), validated(err, o.validate, o.question.Selection)
 }
 
 func newRecordsAsker(c *cli.Context) (asker, error) {

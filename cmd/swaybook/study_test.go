@@ -154,11 +154,11 @@ func TestProductsAnswerAsCommands(t *testing.T) {
 		}
 		for _, f := range p.files {
 			var got, want, stderr bytes.Buffer
-			if err := a.Write(&got, f.format); err != nil {
+			if err := f.write(a, &got); err != nil {
 				t.Errorf("%s: %v", f.path, err)
 			}
 			args := append([]string{"swaybook", "--store", at("quays.db")}, commands[name]...)
-			if code := run(ctx, append(args, "--format", string(f.format)), &want, &stderr); code != exitDone {
+			if code := run(ctx, append(args, "--format", string(fileFormats[f.format])), &want, &stderr); code != exitDone {
 				t.Fatalf("%v: exit code %d: %s", args, code, stderr.String())
 			}
 			if got.String() != want.String() || got.Len() == 0 {

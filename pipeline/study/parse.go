@@ -185,10 +185,10 @@ func (r *reader) withSelection(in *table, p Product, flags []Flag) []Setting {
 
 func fileOf(t Text) (File, error) {
 	switch f := Format(strings.ToLower(strings.TrimPrefix(filepath.Ext(t.Value), "."))); f {
-	case CSV, JSON, TXT:
+	case CSV, JSON, TXT, SVG, PNG:
 		return File{t, f}, nil
 	}
-	return File{}, fmt.Errorf("%s: want a name that ends in .csv, .json or .txt", tomlfile.Quote(filepath.Base(t.Value)))
+	return File{}, fmt.Errorf("%s: want a name that ends in .csv, .json, .txt, .svg or .png", tomlfile.Quote(filepath.Base(t.Value)))
 }
 
 // checkNames refuses a name that two products have, of whatever kind: reports go by it.

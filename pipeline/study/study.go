@@ -90,7 +90,12 @@ const (
 	CSV  Format = "csv"
 	JSON Format = "json"
 	TXT  Format = "txt" // tables for people
+	SVG  Format = "svg" // figures
+	PNG  Format = "png"
 )
+
+// IsFigure reports whether a file of the format is a figure.
+func (f Format) IsFigure() bool { return f == SVG || f == PNG }
 
 // Vocabulary is what commands accept in a study, by their flags.
 type Vocabulary struct {

@@ -155,7 +155,7 @@ func TestMistakes(t *testing.T) {
 		{"a list within a list", least + "periods = [1,\n[2]]\n", "x.toml:5: periods: want a text or a number, found a list"},
 		{"a number without end", least + "periods = [1,\ninf]\n", "x.toml:6: periods: want a finite number"},
 		{"an empty list", least + "periods = []\n", "x.toml:5: periods: is empty"},
-		{"another extension", least + "[spectrum.a]\nfiles = [\n\"a.csv\",\n\"a.png\"]\n", "x.toml:8: spectrum.a.files: \"a.png\": want a name that ends in .csv, .json or .txt"},
+		{"another extension", least + "[spectrum.a]\nfiles = [\n\"a.csv\",\n\"a.pdf\"]\n", "x.toml:8: spectrum.a.files: \"a.pdf\": want a name that ends in .csv, .json, .txt, .svg or .png"},
 		{"format", least + "[spectrum.a]\nformat = \"csv\"\n", "x.toml:6: spectrum.a.format: follows from the names of the files"},
 		{"an output twice", least + "[spectrum.a]\nfiles = \"out/a.csv\"\n[records.b]\nfiles = \"./out/../out/a.csv\"\n", "x.toml:8: records.b.files: out/a.csv is the path of spectrum.a.files in line 6 too"},
 		{"an output that is the state", least + "state = \"a.json\"\n[spectrum.a]\nfiles = \"a.json\"\n", "x.toml:7: spectrum.a.files: a.json is the path of state in line 5 too"},

@@ -133,7 +133,7 @@ func TestPNG(t *testing.T) {
 func TestNothingToDraw(t *testing.T) {
 	nan := math.NaN()
 	for _, s := range []*Spectra{{}, {PeriodsS: []float64{1}, Each: [][]float64{{0}}, Counts: []int{1}}, {PeriodsS: []float64{1}, Curves: []Curve{{"a", Mean, []float64{nan}}}, Counts: []int{0}}} {
-		if err := Write(io.Discard, SVG, Half, s); !errors.Is(err, errNothing) {
+		if err := Write(io.Discard, SVG, Half, s); !errors.Is(err, ErrNothing) {
 			t.Errorf("%+v: %v", s, err)
 		}
 	}

@@ -52,7 +52,7 @@ func (r Reading) Values() (sd, psv, psa float64) {
 func (s *FourWay) Draw(c draw.Canvas) error {
 	base := Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves}
 	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
-		return errNothing
+		return ErrNothing
 	}
 	f := s.frame(draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -base.heading(c)), &base)
 	f.grid()

@@ -51,14 +51,14 @@ const (
 	footRoom  vg.Length = 14
 )
 
-// errNothing says that there is nothing to draw.
-var errNothing = errors.New("no spectrum to draw: all values are missing or zero")
+// ErrNothing says that there is nothing to draw.
+var ErrNothing = errors.New("no spectrum to draw: all values are missing or zero")
 
 // Draw draws the chart.
 func (s *Spectra) Draw(c draw.Canvas) error {
 	lowest, highest := s.extent()
 	if len(s.PeriodsS) == 0 || !(highest > 0) {
-		return errNothing
+		return ErrNothing
 	}
 	top := s.heading(c)
 	f := frame{
