@@ -70,11 +70,12 @@ func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
 }
 
 // FourWay is the answer as a four-way chart, with what is read at the marks on the median or,
-// where few motions support none, on the mean. It needs Each, and MeasurePSV.
+// where few motions support none, on the mean. It needs Each, and SD, PSV or PSA.
 func (a *SpectrumAnswer) FourWay(units Units, marks []chart.Mark) *chart.FourWay {
 	sd, _, sdInM := MeasureSD.unitOf(units)
 	psv, _, psvInMPS := MeasurePSV.unitOf(units)
 	flat := a.Chart(UnitsSI, nil, false)
+	a.toPSV(flat)
 	c := &chart.FourWay{
 		Title: "Four-way spectrum, damping " + percentText(a.Damping), Notes: flat.Notes, Foot: flat.Foot, PeriodsS: a.PeriodsS,
 		Units: chart.FourWayUnits{SD: sd, PSV: psv, SDInM: sdInM, PSVInMPS: psvInMPS}, Each: flat.Each, Curves: flat.Curves,
@@ -92,6 +93,44 @@ func (a *SpectrumAnswer) FourWay(units Units, marks []chart.Mark) *chart.FourWay
 		}
 	}
 	return c
+}
+
+// toPSV makes the ordinates of a chart in SI PSV, in m/s.
+func (a *SpectrumAnswer) toPSV(c *chart.Spectra) {
+	if a.Measure == MeasurePSV {
+		return
+	}
+	scale := func(values []float64) {
+		for i, t := range a.PeriodsS {
+			values[i] *= MeasurePSV.of(1, omega(t)) / a.Measure.of(1, omega(t))
+		}
+	}
+	for _, values := range c.Each {
+		scale(values)
+	}
+	for _, curve := range c.Curves {
+		scale(curve.Values)
+	}
+}
+
+// HasFourWay reports whether the answer has a four-way chart, which ratios have not.
+func (a *SpectrumAnswer) HasFourWay() bool { return !a.Measure.isRatio() }
+
+// ValuesAt are what the answer's curves say at a period, by position, in words.
+func (a *SpectrumAnswer) ValuesAt(period int, units Units) string {
+	unit, _, per := a.Measure.unitOf(units)
+	if a.Measure.isRatio() {
+		unit = ""
+	}
+	words := []string{"T = " + figure(a.PeriodsS[period]) + " s"}
+	c := chart.Spectra{}
+	a.addCurves(&c, per)
+	for _, curve := range c.Curves {
+		if v := curve.Values[period]; isDefined(v) {
+			words = append(words, strings.TrimSpace(curve.Name+" "+figure(v)+" "+unit))
+		}
+	}
+	return strings.Join(append(words, countOf(a.Reductions[period].Count, "motion", "motions")), " · ")
 }
 
 // readAt reads a curve at a period, between its points along a straight line on logarithmic

@@ -32,13 +32,19 @@ var quantityUnits = map[string]quantityUnit{
 }
 
 func (a *DemandAnswer) table(units Units) []byte {
-	text := fmt.Appendf(nil, "Demand on a structure of %s\n%s\n%s\n", a.Structure.text(units), a.Selection.heading(), a.Selection.methodLine())
-	text = a.quantitiesTable(text, false, units)
+	text := fmt.Appendf(nil, "%s\n%s\n%s\n", a.title(units), a.Selection.heading(), a.Selection.methodLine())
+	t := a.rows(false, units)
+	text = t.appendTo(text)
 	if a.Band != nil {
-		text = fmt.Appendf(text, "\nLargest of every motion over periods from %s s to %s s\n\n", figure(a.Band.FromS), figure(a.Band.ToS))
-		text = a.quantitiesTable(text, true, units)
+		text = fmt.Appendf(text, "\n%s\n\n", a.Band.title())
+		t = a.rows(true, units)
+		text = t.appendTo(text)
 	}
 	return append(append(text, '\n'), a.Remarks()...)
+}
+
+func (a *DemandAnswer) title(units Units) string {
+	return "Demand on a structure of " + a.Structure.text(units)
 }
 
 func (a *DemandAnswer) statistics() []statistic {
@@ -69,7 +75,8 @@ func (a *DemandAnswer) eachRow(overBand bool, row func(quantity, group string, r
 	}
 }
 
-func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) []byte {
+// rows is the table of the quantities at the period or over the band.
+func (a *DemandAnswer) rows(overBand bool, units Units) table {
 	t := table{columns: []column{{name: "quantity", isWord: true}, {name: "unit", isWord: true}}}
 	hasCounts := a.isGrouped() || !a.Selection.Balance.isNone()
 	if a.isGrouped() {
@@ -94,7 +101,7 @@ func (a *DemandAnswer) quantitiesTable(dst []byte, overBand bool, units Units) [
 		row = append(row, cells(list, r, per)...)
 		t.add(append(row, a.Selection.governingText(r))...)
 	})
-	return t.appendTo(dst)
+	return t
 }
 
 // csv has a row a quantity, and over the band another; the periods say which is which.

@@ -16,7 +16,8 @@ func (a *NearestAnswer) Write(w io.Writer, format Format, units Units) error {
 // Remarks returns what PortfolioAnswer.Remarks does.
 func (a *NearestAnswer) Remarks() string { return a.Error.remark() + remarks(&a.Selection) }
 
-func (a *NearestAnswer) table(units Units) []byte {
+// rows is the table of the answer.
+func (a *NearestAnswer) rows(units Units) table {
 	t := table{columns: []column{{name: "structure", isWord: true}, {name: "period", unit: "s"}, {name: "damping"}}}
 	for _, c := range columnsOfPortfolio {
 		name, _ := quantityUnits[c.name].in(units)
@@ -26,8 +27,16 @@ func (a *NearestAnswer) table(units Units) []byte {
 	for i := range a.Rows {
 		t.add(a.Rows[i].cells(units)...)
 	}
-	text := fmt.Appendf(nil, "Demand on %s from the nearest stations, %s ordinates\n%s\n%s\n", countOf(len(a.Rows), "structure", "structures"), a.Ordinates,
-		a.Selection.heading(), a.Selection.methodLine())
+	return t
+}
+
+func (a *NearestAnswer) title() string {
+	return fmt.Sprintf("Demand on %s from the nearest stations, %s ordinates", countOf(len(a.Rows), "structure", "structures"), a.Ordinates)
+}
+
+func (a *NearestAnswer) table(units Units) []byte {
+	t := a.rows(units)
+	text := fmt.Appendf(nil, "%s\n%s\n%s\n", a.title(), a.Selection.heading(), a.Selection.methodLine())
 	return append(append(t.appendTo(text), '\n'), a.Remarks()...)
 }
 

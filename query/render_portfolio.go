@@ -72,7 +72,8 @@ func (a *PortfolioAnswer) greatest() int {
 // percentile.
 var columnsOfPortfolio = []struct{ name, title string }{{"sd_m", "SD"}, {"base_shear_n", "shear"}, {"base_moment_nm", "moment"}}
 
-func (a *PortfolioAnswer) table(units Units) []byte {
+// rows is the table of the answer.
+func (a *PortfolioAnswer) rows(units Units) table {
 	t := table{columns: []column{{name: "structure", isWord: true}, {name: "period", unit: "s"}, {name: "damping"}, {name: "count"}}}
 	for _, c := range columnsOfPortfolio {
 		for _, i := range a.shown() {
@@ -84,8 +85,16 @@ func (a *PortfolioAnswer) table(units Units) []byte {
 	for i := range a.Rows {
 		t.add(a.tableRow(&a.Rows[i], units)...)
 	}
-	text := fmt.Appendf(nil, "Demand on %s, %s ordinates%s\n%s\n%s\n", countOf(len(a.Rows), "structure", "structures"), a.Ordinates,
-		a.envelopeWords(), a.Selection.heading(), a.Selection.methodLine())
+	return t
+}
+
+func (a *PortfolioAnswer) title() string {
+	return fmt.Sprintf("Demand on %s, %s ordinates%s", countOf(len(a.Rows), "structure", "structures"), a.Ordinates, a.envelopeWords())
+}
+
+func (a *PortfolioAnswer) table(units Units) []byte {
+	t := a.rows(units)
+	text := fmt.Appendf(nil, "%s\n%s\n%s\n", a.title(), a.Selection.heading(), a.Selection.methodLine())
 	return append(append(append(t.appendTo(text), '\n'), a.tableRemarks()...), a.Remarks()...)
 }
 

@@ -34,7 +34,8 @@ func writeRows[T any](w io.Writer, what string, format Format, rows []T, table, 
 	return writeText(w, what, text)
 }
 
-func (a *RecordsAnswer) table() []byte {
+// rows is the table of the answer.
+func (a *RecordsAnswer) rows() table {
 	t := table{columns: []column{
 		{name: "record", isWord: true}, {name: "component", isWord: true},
 		{name: "event", isWord: true}, {name: "magnitude"}, {name: "station", isWord: true}, {name: "distance", unit: "km"},
@@ -46,6 +47,11 @@ func (a *RecordsAnswer) table() []byte {
 		t.add(r.Record, r.Component, orDash(r.Event), shortOrDash(r.Magnitude), orDash(r.Station), figure(orNaN(r.DistanceKM)),
 			r.Siting, shortest(r.StepS), strconv.Itoa(r.Samples), figure(r.PGA), figure(r.PGV), figure(r.PGD), r.Format)
 	}
+	return t
+}
+
+func (a *RecordsAnswer) table() []byte {
+	t := a.rows()
 	text := append(t.appendTo(nil), a.findings()...)
 	if remarks := a.Selection.Remarks(); remarks != "" {
 		text = append(append(text, '\n'), remarks...)
@@ -155,7 +161,8 @@ func (a *RejectionsAnswer) Write(w io.Writer, format Format) error {
 	return writeRows(w, "rejections", format, a.Rows, a.table, a.csv)
 }
 
-func (a *RejectionsAnswer) table() []byte {
+// rows is the table of the answer.
+func (a *RejectionsAnswer) rows() table {
 	t := table{columns: []column{{name: "source", isWord: true}, {name: "line"}, {name: "cause", isWord: true}}}
 	for i := range a.Rows {
 		r := &a.Rows[i]
@@ -165,6 +172,11 @@ func (a *RejectionsAnswer) table() []byte {
 		}
 		t.add(r.Source, line, r.Cause)
 	}
+	return t
+}
+
+func (a *RejectionsAnswer) table() []byte {
+	t := a.rows()
 	return t.appendTo(nil)
 }
 

@@ -60,7 +60,8 @@ func remarks(r *SelectionReport) string { return r.Remarks() + "caution: " + Cau
 // said already.
 func (r *SelectionReport) hasRoles() bool { return r.Component == ComponentEach }
 
-func (a *SpectrumAnswer) table(units Units) []byte {
+// rows is the table of the answer.
+func (a *SpectrumAnswer) rows(units Units) table {
 	unit, _, per := a.Measure.unitOf(units)
 	t := table{columns: []column{{name: "period", unit: "s"}}}
 	if a.isGrouped() {
@@ -77,14 +78,22 @@ func (a *SpectrumAnswer) table(units Units) []byte {
 		row = append(append(row, fmt.Sprint(r.Count)), cells(list, r, per)...)
 		t.add(append(row, a.Selection.governingText(r))...)
 	})
+	return t
+}
+
+func (a *SpectrumAnswer) title(units Units) string {
+	unit, _, _ := a.Measure.unitOf(units)
 	in := " in " + unit
 	if a.Measure.isRatio() {
 		in = "" // a number
 	}
-	text := fmt.Appendf(nil, "%s%s, damping %s\n%s\n%s\n", a.Measure.title(), in, percentText(a.Damping),
-		a.Selection.heading(), a.Selection.methodLine())
-	text = t.appendTo(text)
-	return append(append(text, '\n'), a.Remarks()...)
+	return fmt.Sprintf("%s%s, damping %s", a.Measure.title(), in, percentText(a.Damping))
+}
+
+func (a *SpectrumAnswer) table(units Units) []byte {
+	t := a.rows(units)
+	text := fmt.Appendf(nil, "%s\n%s\n%s\n", a.title(units), a.Selection.heading(), a.Selection.methodLine())
+	return append(append(t.appendTo(text), '\n'), a.Remarks()...)
 }
 
 // wholeGroup is the label of all groups together.

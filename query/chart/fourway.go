@@ -50,11 +50,12 @@ func (r Reading) Values() (sd, psv, psa float64) {
 
 // Draw draws the chart.
 func (s *FourWay) Draw(c draw.Canvas) error {
-	base := Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves}
+	base := s.base()
 	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	f := s.frame(draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -base.heading(c)), &base)
+	base.heading(c)
+	f := s.layout(c, base)
 	f.grid()
 	diagonals := s.diagonals(&f)
 	for i := range diagonals {
@@ -75,18 +76,23 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	return nil
 }
 
+// base is what the chart has in common with one of spectra.
+func (s *FourWay) base() *Spectra {
+	return &Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves}
+}
+
 // mostSpan is the greatest PSV over the least that is shown: more decades leave no room for
 // the others.
 const mostSpan = 2000
 
-// frame is the frame of the chart in an area.
-func (s *FourWay) frame(c draw.Canvas, base *Spectra) frame {
+// layout is the frame of the chart. Something is there to be drawn.
+func (s *FourWay) layout(c draw.Canvas, base *Spectra) frame {
 	lowest, highest := base.extent()
 	lowest = max(lowest, highest/mostSpan)
 	per := s.Units.PSVInMPS
 	f := frame{x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)}
 	f.y = inUnit(newAxis("PSV ("+s.Units.PSV+")", lowest/per, highest/per, true), per)
-	f.Canvas = equalDecades(c, &f)
+	f.Canvas = equalDecades(draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -base.headingRoom()), &f)
 	return f
 }
 

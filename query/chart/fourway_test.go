@@ -40,7 +40,7 @@ func readBack(f *frame, p vg.Point) (periodS, psv float64) {
 func TestDiagonalsAreTrue(t *testing.T) {
 	s := inventedFourWay()
 	canvas := draw.NewCanvas(vgsvg.New(500, 500), 500, 500)
-	f := s.frame(canvas, &Spectra{PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves})
+	f := s.layout(canvas, s.base())
 	sd, psa := 0, 0
 	for _, d := range s.diagonals(&f) {
 		upper, lower, ok := d.within(&f)

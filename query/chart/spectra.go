@@ -56,28 +56,35 @@ var ErrNothing = errors.New("no spectrum to draw: all values are missing or zero
 
 // Draw draws the chart.
 func (s *Spectra) Draw(c draw.Canvas) error {
-	lowest, highest := s.extent()
-	if len(s.PeriodsS) == 0 || !(highest > 0) {
+	if _, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	top := s.heading(c)
-	f := frame{
-		x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], !s.IsLinear),
-		y: newAxis(s.Quantity, lowest, highest, !s.IsLinear),
-	}
-	bottom := footRoom + bottomRoom
-	strip := f
-	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+8, -top)
+	s.heading(c)
+	f, strip := s.layout(c)
 	f.grid()
 	s.drawEach(&f)
 	s.drawCurves(&f, &f)
 	s.drawMarks(&f)
 	f.axes(false)
-	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
-	strip.Max.Y = strip.Min.Y + stripRoom
 	s.drawCounts(&strip)
 	s.foot(c)
 	return nil
+}
+
+// layout is the frame of the spectra, and that of the counts below it. Something is there to
+// be drawn.
+func (s *Spectra) layout(c draw.Canvas) (f, strip frame) {
+	lowest, highest := s.extent()
+	f = frame{
+		x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], !s.IsLinear),
+		y: newAxis(s.Quantity, lowest, highest, !s.IsLinear),
+	}
+	strip = f
+	bottom := footRoom + bottomRoom
+	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+8, -s.headingRoom())
+	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
+	strip.Max.Y = strip.Min.Y + stripRoom
+	return f, strip
 }
 
 // foot writes what stands below the chart.
@@ -86,17 +93,22 @@ func (s *Spectra) foot(c draw.Canvas) {
 	c.FillText(style, vg.Point{X: c.Min.X + leftRoom, Y: c.Min.Y + footRoom/2}, shorten(style, s.Foot, c.Size().X-leftRoom-4))
 }
 
-// heading writes the title and notes and returns the room that they take.
-func (s *Spectra) heading(c draw.Canvas) vg.Length {
-	at := vg.Point{X: c.Min.X + leftRoom, Y: c.Max.Y - 11}
+// The room of the title, from the top.
+const titleMiddle, titleRoom vg.Length = 11, 24
+
+// headingRoom is the room that the title and notes take.
+func (s *Spectra) headingRoom() vg.Length { return titleRoom + lineRoom*vg.Length(len(s.Notes)) }
+
+// heading writes the title and notes.
+func (s *Spectra) heading(c draw.Canvas) {
+	at := vg.Point{X: c.Min.X + leftRoom, Y: c.Max.Y - titleMiddle}
 	width := c.Size().X - leftRoom - 6
 	c.FillText(bold(titleSize, ink), at, shorten(bold(titleSize, ink), s.Title, width))
-	at.Y -= 13
+	at.Y = c.Max.Y - titleRoom
 	for _, note := range s.Notes {
 		c.FillText(writing(labelSize, quiet), at, shorten(writing(labelSize, quiet), note, width))
 		at.Y -= lineRoom
 	}
-	return c.Max.Y - at.Y
 }
 
 // extent is the least positive and the greatest value of all that is drawn. Of single
