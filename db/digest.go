@@ -27,15 +27,16 @@ func Digest(ctx context.Context, path string) (digest string, err error) {
 	err = Inspect(ctx, path, func(Fault) {}, func(i *Inspection) error {
 		v, err := snapshotOf(ctx, i.tx, nothingShown, `state = '`+EditionPublished+`'`)
 		if err == nil {
-			digest, err = v.digest(ctx)
+			digest, err = v.Digest(ctx)
 		}
 		return err
 	})
 	return digest, err
 }
 
-// digest writes what all results share, then the records in the order of their digests.
-func (s *Snapshot) digest(ctx context.Context) (string, error) {
+// Digest is the digest of what the snapshot shows, as of what is published the function Digest.
+// What all results share is written first, then the records in the order of their digests.
+func (s *Snapshot) Digest(ctx context.Context) (string, error) {
 	d := &digester{snapshot: s, records: map[int64]*digestedRecord{}}
 	for _, read := range []func(context.Context) error{d.components, d.computed, d.measures, d.statements} {
 		if err := read(ctx); err != nil {

@@ -50,7 +50,8 @@ type Recipe struct {
 	Steps string // canonical JSON
 }
 
-func (r Recipe) hash() string {
+// Hash is the SHA-256 of the steps, in hex digits.
+func (r Recipe) Hash() string {
 	sum := sha256.Sum256([]byte(r.Steps))
 	return hex.EncodeToString(sum[:])
 }
@@ -73,9 +74,9 @@ func (t *Tx) Current(ctx context.Context) (g Generation, ok bool, err error) {
 // where there is none.
 func (t *Tx) PutGeneration(ctx context.Context, recipe Recipe, grid Grid, solver string) (Generation, error) {
 	g := Generation{Recipe: recipe, Solver: solver, Grid: grid}
-	recipeID, err := t.idOf(ctx, `SELECT id FROM recipe WHERE hash = ?`, recipe.hash())
+	recipeID, err := t.idOf(ctx, `SELECT id FROM recipe WHERE hash = ?`, recipe.Hash())
 	if err == nil && recipeID == 0 {
-		recipeID, err = t.insert(ctx, `INSERT INTO recipe (hash, name, steps) VALUES (?, ?, ?)`, recipe.hash(), recipe.Name, recipe.Steps)
+		recipeID, err = t.insert(ctx, `INSERT INTO recipe (hash, name, steps) VALUES (?, ?, ?)`, recipe.Hash(), recipe.Name, recipe.Steps)
 	}
 	if err != nil {
 		return g, fmt.Errorf("put recipe: %w", err)

@@ -223,7 +223,7 @@ func TestAsDeliveredIsWhatTheMigrationWrote(t *testing.T) {
 		t.Fatal(err)
 	}
 	r := Recipe{Name: "as-delivered", Steps: condition.AsDelivered().Canonical()}
-	if !strings.Contains(string(step), "steps = '"+r.Steps+"', hash = '"+r.hash()+"'") {
-		t.Errorf("the migration does not write %s with hash %s", r.Steps, r.hash())
+	if !strings.Contains(string(step), "steps = '"+r.Steps+"', hash = '"+r.Hash()+"'") {
+		t.Errorf("the migration does not write %s with hash %s", r.Steps, r.Hash())
 	}
 }

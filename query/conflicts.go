@@ -165,7 +165,8 @@ func (a *ConflictsAnswer) Write(w io.Writer, format Format) error {
 	return writeRows(w, "conflicts", format, a.Rows, a.table, a.csv)
 }
 
-func (a *ConflictsAnswer) table() []byte {
+// rows is the table of the answer.
+func (a *ConflictsAnswer) rows() table {
 	t := table{columns: []column{
 		{name: "subject", isWord: true}, {name: "code", isWord: true}, {name: "attribute", isWord: true},
 		{name: "taken", isWord: true}, {name: "from", isWord: true}, {name: "other", isWord: true}, {name: "from", isWord: true},
@@ -174,6 +175,11 @@ func (a *ConflictsAnswer) table() []byte {
 		r := &a.Rows[i]
 		t.add(r.Subject, r.Code, r.Attribute, r.Taken, fromWords(r.TakenFrom, r.TakenFile), r.Other, fromWords(r.OtherFrom, r.OtherFile))
 	}
+	return t
+}
+
+func (a *ConflictsAnswer) table() []byte {
+	t := a.rows()
 	return t.appendTo(nil)
 }
 

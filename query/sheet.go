@@ -96,6 +96,12 @@ func (a *RejectionsAnswer) Sheet() *Sheet {
 	return &Sheet{Title: "Rejected: " + countOf(len(a.Rows), "file or part of one", "files or parts of them"), Tables: []Table{t.export("")}}
 }
 
+// Sheet is the list of conflicts.
+func (a *ConflictsAnswer) Sheet() *Sheet {
+	t := a.rows()
+	return &Sheet{Title: "Stated otherwise: " + countOf(len(a.Rows), "value", "values"), Tables: []Table{t.export("")}}
+}
+
 func (b *DemandBand) title() string {
 	return fmt.Sprintf("Largest of every motion over periods from %s s to %s s", figure(b.FromS), figure(b.ToS))
 }

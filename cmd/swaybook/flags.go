@@ -95,9 +95,14 @@ func noArguments(c *cli.Context) error {
 
 // withStore opens the store for reading around f.
 func withStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
-	store, err := db.Open(c.Context, storePath(c), pipeline.SolverVersion)
+	return withStoreAt(c, storePath(c), f)
+}
+
+// withStoreAt is withStore of a store at a path.
+func withStoreAt(c *cli.Context, path string, f func(ctx context.Context, store *db.Store) error) error {
+	store, err := db.Open(c.Context, path, pipeline.SolverVersion)
 	if errors.Is(err, db.ErrNoStore) {
-		return explainNoStore(err, storePath(c))
+		return explainNoStore(err, path)
 	}
 	if err != nil {
 		return err

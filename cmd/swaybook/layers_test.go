@@ -14,7 +14,7 @@ import (
 // layers says what a package may import of ours, and why. A package that is
 // not listed may import nothing of ours; tests are free.
 var layers = map[string][]string{
-	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "pipeline/beside", "db", "query", "query/chart"},                                                    // wiring, no arithmetic and no SQL
+	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "pipeline/beside", "db", "query", "query/chart", "query/report"},                                    // wiring, no arithmetic and no SQL
 	"ingest":             {"ingest/miniseed", "ingest/fdsnxml", "ingest/archive", "ingest/tomlfile"},                                                                                                          // what one reader needs
 	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition", "pipeline/signal", "pipeline/intensity", "pipeline/quality"}, // the way in
 	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                                                                             // invents files, knows nothing of readers
@@ -27,6 +27,7 @@ var layers = map[string][]string{
 	"pipeline/likeness":  {"pipeline/internal/elementary"},
 	"pipeline/signal":    {"pipeline/internal/elementary"},
 	"pipeline/spectrum":  {"pipeline/internal/kernel", "pipeline/internal/elementary"},                                                                                                            // the loops behind the solver
+	"query/report":       {"query", "query/chart"},                                                                                                                                                // answers on a page
 	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "query/chart", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"}, // the way out; never pipeline itself
 	"query/design":       {"query/stats", "ingest/tomlfile"},                                                                                                                                      // logarithms of the same bits everywhere; lines of keys
 	"query/mixed":        {"query/stats"},                                                                                                                                                         // logarithms that are the same everywhere

@@ -123,6 +123,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			ingestCommand(),
 			queryCommand(),
 			exportCommand(),
+			reportCommand(),
 			reprocessCommand(),
 			runsCommand(),
 			pruneCommand(),

@@ -328,6 +328,7 @@ func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
 // writer is an answer that can be written.
 type writer interface {
 	Write(io.Writer, query.Format) error
+	Sheet() *query.Sheet
 }
 
 // otherLists are what query records lists instead of records, by flag.

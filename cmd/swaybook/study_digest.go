@@ -101,6 +101,20 @@ func decidedBy(s *study.Study) string {
 	return d.sum()
 }
 
+// pageBy is the digest of all that a report is made of beside the store.
+func pageBy(p *studyPlan) string {
+	d := &digester{}
+	d.add(program(), p.study.File, p.study.Name.Value, p.study.Purpose.Value)
+	for _, one := range p.products {
+		d.add(one.path, one.asked)
+	}
+	for _, chosen := range p.study.Selections {
+		d.add(chosen.Path())
+		d.settings(chosen.Settings)
+	}
+	return d.sum()
+}
+
 // askedBy is the digest of a product's question.
 func askedBy(p *study.Product) string {
 	d := &digester{}

@@ -65,35 +65,43 @@ type comparison struct {
 	report   *driftReport
 }
 
-// compare asks all products as of the published edition too. Its answers are those to the
-// study's questions of today, so that a question that changed is no drift.
+// compare tells the drift against the published edition.
 func (r *studyRun) compare(ctx context.Context, edition, published int64) error {
-	changes, err := r.store.ChangesSince(ctx, published, edition)
+	drift, changes, err := r.outputs.drift(ctx, r.plan.asked(), edition, published, r.bound(), r.plan.ingest.monitor.compared)
+	if changes != nil {
+		r.state.Changes, r.state.Drift = newChangeReport(changes), drift
+	}
+	return err
+}
+
+// drift asks all products, whose answers of an edition are known, as of another too. Its
+// answers are those to the study's questions of today, so that a question that changed is no
+// drift. What is known of it comes beside an error.
+func (o *outputs) drift(ctx context.Context, asked []product, edition, since int64, bound *float64, step func(i, of int)) (*driftReport, *db.Changes, error) {
+	changes, err := o.store.ChangesSince(ctx, since, edition)
 	if err != nil {
-		return err
+		return nil, nil, err
 	}
-	r.state.Changes = newChangeReport(changes)
-	stations, err := r.store.StationCodes(ctx, published, edition)
+	d := &driftReport{Edition: edition, Since: since, Bound: bound, Products: []productDrift{}}
+	stations, err := o.store.StationCodes(ctx, since, edition)
 	if err != nil {
-		return err
+		return d, changes, err
 	}
-	c := &comparison{outputs: r.outputs, bound: r.bound(), changes: changes, stations: stations, report: &driftReport{Edition: edition, Since: published, Bound: r.bound(), Products: []productDrift{}}}
-	r.state.Drift = c.report
-	if c.report.RecipeBefore, c.report.SolverBefore, err = madeBy(ctx, r.store, published); err != nil {
-		return err
+	c := &comparison{outputs: o, bound: bound, changes: changes, stations: stations, report: d}
+	if d.RecipeBefore, d.SolverBefore, err = madeBy(ctx, o.store, since); err != nil {
+		return d, changes, err
 	}
-	if c.report.Recipe, c.report.Solver, err = madeBy(ctx, r.store, edition); err != nil {
-		return err
+	if d.Recipe, d.Solver, err = madeBy(ctx, o.store, edition); err != nil {
+		return d, changes, err
 	}
-	asked := r.watched()
 	for i := range asked {
-		r.plan.ingest.monitor.compared(i, len(asked))
+		step(i, len(asked))
 		if err := c.product(ctx, &asked[i]); err != nil {
-			return err
+			return d, changes, err
 		}
 	}
-	slices.SortStableFunc(c.report.Products, func(a, b productDrift) int { return cmp.Compare(b.greatest(), a.greatest()) })
-	return nil
+	slices.SortStableFunc(d.Products, func(a, b productDrift) int { return cmp.Compare(b.greatest(), a.greatest()) })
+	return d, changes, nil
 }
 
 // madeBy is by what recipe and solver an edition is computed.
@@ -261,12 +269,7 @@ func (c *comparison) isRecomputed(m query.Motion) bool {
 // print writes the changes with their causes, the greatest first.
 func (d *driftReport) print(p *printer) {
 	p.printf("Results against edition %d, which was published:\n", d.Since)
-	if d.RecipeBefore != d.Recipe {
-		p.printf("  the recipe was %s, and is %s\n", d.RecipeBefore, d.Recipe)
-	}
-	if d.SolverBefore != d.Solver {
-		p.printf("  the solver was %s, and is %s\n", d.SolverBefore, d.Solver)
-	}
+	d.printMakers(p)
 	if len(d.Products) == 0 {
 		p.printf("  as before\n")
 	}
@@ -276,6 +279,16 @@ func (d *driftReport) print(p *printer) {
 			return
 		}
 		d.Products[i].print(p, d.Bound)
+	}
+}
+
+// printMakers says by what the editions are computed, where that differs.
+func (d *driftReport) printMakers(p *printer) {
+	if d.RecipeBefore != d.Recipe {
+		p.printf("  the recipe was %s, and is %s\n", d.RecipeBefore, d.Recipe)
+	}
+	if d.SolverBefore != d.Solver {
+		p.printf("  the solver was %s, and is %s\n", d.SolverBefore, d.Solver)
 	}
 }
 

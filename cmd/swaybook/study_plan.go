@@ -2,6 +2,7 @@ package main
 
 import (
 	"bytes"
+	"context"
 	"errors"
 	"fmt"
 	"io/fs"
@@ -12,6 +13,7 @@ import (
 
 	"github.com/urfave/cli/v2"
 
+	"swaybook/db"
 	"swaybook/ingest"
 	"swaybook/pipeline/study"
 )
@@ -30,6 +32,41 @@ type studyPlan struct {
 	watched  []product // spectra of the selections that no product asks for spectra of
 }
 
+// asked are the products, and the selections that are watched beside them.
+func (p *studyPlan) asked() []product { return slices.Concat(p.products, p.watched) }
+
+// written are the products, and last the report, which is made of their answers: of those
+// among the outputs, where these are of the same edition, and of the drift, where it is known.
+func (p *studyPlan) written(o *outputs, drift *driftReport) []product {
+	if p.study.Report.Value == "" {
+		return p.products
+	}
+	return append(slices.Clip(p.products), p.page(o, drift))
+}
+
+// page is the report as a product.
+func (p *studyPlan) page(o *outputs, drift *driftReport) product {
+	return product{
+		path: "report", asked: pageBy(p), files: []outputFile{{p.study.Report.Value, study.HTML}},
+		ask: func(ctx context.Context, _ *db.Store, at moment) (answer, error) {
+			asked := p.asked()
+			for i := range asked {
+				if _, ok := o.answers[asked[i].path]; ok {
+					continue
+				}
+				r, err := o.ask(ctx, &asked[i], at)
+				if err != nil {
+					return nil, err
+				}
+				o.answers[asked[i].path] = r
+			}
+			m := &paginator{plan: p, outputs: o, edition: at.run, drift: drift}
+			page, err := m.page(ctx)
+			return pageOf{Page: page}, err
+		},
+	}
+}
+
 // sourcePlan is what one source holds.
 type sourcePlan struct {
 	path       string
@@ -44,11 +81,12 @@ type planner struct {
 	c        *cli.Context
 	plan     *studyPlan
 	mistakes study.Mistakes
+	// hasReport says that answers are to be laid out as a page.
+	hasReport bool
 }
 
-// readStudyPlan reads a study and what it names. The error has every mistake, in the
-// order of the study's lines.
-func readStudyPlan(c *cli.Context, file string) (*studyPlan, error) {
+// newPlanner reads the file of a study, of which there may be none to plan.
+func newPlanner(c *cli.Context, file string) (*planner, error) {
 	s, err := readStudy(file)
 	mistakes, ok := errors.AsType[study.Mistakes](err)
 	if err != nil && !ok {
@@ -59,7 +97,18 @@ func readStudyPlan(c *cli.Context, file string) (*studyPlan, error) {
 		m.Err = &usageError{m.Err}
 		p.mistakes = append(p.mistakes, m)
 	}
-	if s != nil {
+	p.hasReport = s != nil && s.Report.Value != ""
+	return p, nil
+}
+
+// readStudyPlan reads a study and what it names. The error has every mistake, in the
+// order of the study's lines.
+func readStudyPlan(c *cli.Context, file string) (*studyPlan, error) {
+	p, err := newPlanner(c, file)
+	if err != nil {
+		return nil, err
+	}
+	if p.plan.study != nil {
 		p.store()
 		p.ingest()
 		p.sources()
@@ -164,7 +213,7 @@ func (p *planner) ingest() {
 			own[name] = "a list of the study"
 		}
 	}
-	own[s.State.Value], own[s.Metrics.Value] = "the study's state", "the study's metrics"
+	own[s.State.Value], own[s.Metrics.Value], own[s.Report.Value] = "the study's state", "the study's metrics", "the study's report"
 	for _, product := range s.Products {
 		for _, f := range product.Files {
 			own[f.Value] = "an answer of the study"
@@ -236,6 +285,7 @@ func (p *planner) outputs() {
 	}
 	p.output("state", s.State)
 	p.output("metrics", s.Metrics)
+	p.output("report", s.Report)
 	for _, product := range s.Products {
 		for _, f := range product.Files {
 			p.output(product.Path()+".files", f.Text)
@@ -306,6 +356,9 @@ func (p *planner) withFigures(described *study.Product) []study.Setting {
 			return settings
 		}
 		return append(settings, study.Setting{Key: "plot", Text: f.Text})
+	}
+	if described.Kind == study.Spectrum && p.hasReport { // which draws it too
+		return append(settings, study.Setting{Key: "plot", Text: study.Text{Value: "report.svg"}})
 	}
 	return slices.DeleteFunc(settings, func(s study.Setting) bool {
 		isOfFigure := slices.Contains(figureKeys, s.Key)

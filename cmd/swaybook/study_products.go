@@ -11,6 +11,7 @@ import (
 	"swaybook/pipeline/study"
 	"swaybook/query"
 	"swaybook/query/chart"
+	"swaybook/query/report"
 )
 
 // product is a question of a study, ready to be asked.
@@ -37,7 +38,7 @@ func (f *outputFile) write(a answer, w io.Writer) error {
 
 // fileFormats are the formats of answers, other than figures, by the extensions of files.
 var fileFormats = map[study.Format]query.Format{
-	study.CSV: query.FormatCSV, study.JSON: query.FormatJSON, study.TXT: query.FormatTable,
+	study.CSV: query.FormatCSV, study.JSON: query.FormatJSON, study.TXT: query.FormatTable, study.HTML: "",
 }
 
 // moment is a state of the store: what a run left, 0 for what is published; of any solver,
@@ -55,6 +56,8 @@ type asker func(ctx context.Context, store *db.Store, at moment) (answer, error)
 type answer interface {
 	query.Compared
 	Write(io.Writer, query.Format) error
+	// Section is the answer's part of a report.
+	Section(id string, names report.Names) report.Section
 	// HasFigure reports whether there is something to draw.
 	HasFigure() bool
 	Draw(io.Writer, chart.Format) error
@@ -66,7 +69,11 @@ type inUnits struct {
 	statistics
 	units  query.Units
 	figure func() figure // nil for none
+	// section is its part of a report.
+	section func(id string, names report.Names) report.Section
 }
+
+func (a inUnits) Section(id string, names report.Names) report.Section { return a.section(id, names) }
 
 func (a inUnits) Write(w io.Writer, f query.Format) error { return a.statistics.Write(w, f, a.units) }
 
@@ -91,6 +98,8 @@ type list struct {
 	remarks string
 }
 
+func (l list) Section(id string, _ report.Names) report.Section { return report.Of(id, l.Sheet()) }
+
 // unmeasured is what has nothing by which it could be compared.
 type unmeasured struct{}
 
@@ -110,14 +119,14 @@ var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 	study.Records:  newRecordsAsker,
 }
 
-// askIn asks for statistics in units, which a figure shows where there is one.
-func askIn[A statistics](units query.Units, drawn func(A, query.Units) figure, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
+// askIn asks for statistics in units. A figure shows them where there is one, and a report.
+func askIn[A statistics](units query.Units, drawn func(A, query.Units) figure, section func(string, A, report.Names) report.Section, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
 	return func(ctx context.Context, store *db.Store, at moment) (answer, error) {
 		a, err := ask(ctx, store, at)
 		if err != nil {
 			return nil, err
 		}
-		out := inUnits{statistics: a, units: units}
+		out := inUnits{statistics: a, units: units, section: func(id string, names report.Names) report.Section { return section(id, a, names) }}
 		if drawn != nil {
 			out.figure = func() figure { return drawn(a, units) }
 		}
@@ -127,12 +136,15 @@ func askIn[A statistics](units query.Units, drawn func(A, query.Units) figure, a
 
 func newSpectrumAsker(c *cli.Context) (asker, error) {
 	o, err := newSpectrumOptions(c)
+	section := func(id string, a *query.SpectrumAnswer, _ report.Names) report.Section {
+		return report.Spectrum(id, a, o.units, o.plot.marks, o.plot.axes == axesLinear)
+	}
 	ask := func(ctx context.Context, store *db.Store, at moment) (*query.SpectrumAnswer, error) {
 		q := o.question
 		q.AsOf, q.AnySolver = at.run, at.anySolver
 		return q.Ask(ctx, store)
 	}
-	return askIn(o.units, o.plot.of, ask), validated(err, o.question.Validate, o.question.Selection)
+	return askIn(o.units, o.plot.of, section, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newDemandAsker(c *cli.Context) (asker, error) {
@@ -140,22 +152,31 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 		return newPortfolioAsker(c)
 	}
 	o, err := newDemandOptions(c)
+	section := func(id string, a *query.DemandAnswer, _ report.Names) report.Section {
+		return report.Of(id, a.Sheet(o.units))
+	}
 	ask := func(ctx context.Context, store *db.Store, at moment) (*query.DemandAnswer, error) {
 		q := o.question
 		q.AsOf, q.AnySolver = at.run, at.anySolver
 		return q.Ask(ctx, store)
 	}
-	return askIn(o.units, nil, ask), validated(err, o.question.Validate, o.question.Selection)
+	return askIn(o.units, nil, section, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newPortfolioAsker(c *cli.Context) (asker, error) {
 	o, err := newPortfolioOptions(c)
+	section := func(id string, a statistics, names report.Names) report.Section {
+		if whole, ok := a.(*query.PortfolioAnswer); ok {
+			return report.Portfolio(id, whole, o.units, names)
+		}
+		return report.Of(id, a.(*query.NearestAnswer).Sheet(o.units))
+	}
 	ask := func(ctx context.Context, store *db.Store, at moment) (statistics, error) {
 		asked := o
 		asked.question.AsOf, asked.question.AnySolver = at.run, at.anySolver
 		return asked.ask(ctx, store)
 	}
-	return askIn(o.units, nil, ask), validated(err, o.validate, o.question.Selection)
+	return askIn(o.units, nil, section, ask), validated(err, o.validate, o.question.Selection)
 }
 
 func newRecordsAsker(c *cli.Context) (asker, error) {

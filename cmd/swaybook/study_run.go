@@ -5,7 +5,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"slices"
 
 	"swaybook/db"
 	"swaybook/pipeline"
@@ -117,10 +116,11 @@ func (r *studyRun) follow(ctx context.Context, done pipeline.Reprocessed, before
 	if done.Damaged > 0 {
 		return fmt.Errorf("%s is damaged (records: %d)", r.plan.study.Store.Value, done.Damaged)
 	}
-	if err := r.outputs.refresh(ctx, r.plan.products, done.Published); err != nil {
+	written := r.plan.written(r.outputs, nil)
+	if err := r.outputs.refresh(ctx, written, done.Published); err != nil {
 		return err
 	}
-	if err := r.outputs.keep(ctx, r.plan.products, before); err != nil {
+	if err := r.outputs.keep(ctx, written, before); err != nil {
 		return err
 	}
 	r.state.Outputs = r.outputs.reports
@@ -167,14 +167,11 @@ func (r *studyRun) bound() *float64 {
 	return r.plan.study.MaxDrift
 }
 
-// watched are the products, and the selections that are watched beside them.
-func (r *studyRun) watched() []product { return slices.Concat(r.plan.products, r.plan.watched) }
-
 // approve asks all questions as of the edition, compares the answers with those as of what is
 // published, and, where they may be published, has them written. So what cannot be asked or
 // written is never published.
 func (r *studyRun) approve(ctx context.Context, edition, published int64) (bool, error) {
-	asked := r.watched()
+	asked := r.plan.asked()
 	for i := range asked {
 		r.plan.ingest.monitor.asked(i, len(asked))
 		var err error
@@ -191,14 +188,23 @@ func (r *studyRun) approve(ctx context.Context, edition, published int64) (bool,
 			return false, nil
 		}
 	}
-	for i := range r.plan.products {
-		p := &r.plan.products[i]
-		if err := r.outputs.prepare(p, r.outputs.answers[p.path]); err != nil {
+	written := r.plan.written(r.outputs, r.state.Drift)
+	for i := range written {
+		p := &written[i]
+		answer, ok := r.outputs.answers[p.path]
+		if !ok { // the report, which is made of the others
+			var err error
+			if answer, err = r.outputs.ask(ctx, p, moment{run: edition}); err != nil {
+				return false, err
+			}
+			r.outputs.answers[p.path] = answer
+		}
+		if err := r.outputs.prepare(p, answer); err != nil {
 			return false, err
 		}
 	}
 	if err := ctx.Err(); err != nil {
 		return false, err
 	}
-	return true, r.outputs.swap(r.plan.products, edition)
+	return true, r.outputs.swap(written, edition)
 }

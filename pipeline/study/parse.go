@@ -18,6 +18,8 @@ const (
 	maxText = 1 << 20 // bytes
 	maxName = 80      // characters
 	maxKeep = 1_000_000
+
+	maxPurpose = 2000 // bytes
 )
 
 // Parse reads the file that is called so, and lies in dir, an absolute path. The error
@@ -65,6 +67,9 @@ func (r *reader) document(t *table, v Vocabulary) {
 	if s.Name = t.text("name", true); !isPrintable(s.Name.Value) {
 		t.fail("name", "want at most %d characters that can be printed, on one line", maxName)
 	}
+	if s.Purpose = t.text("purpose", false); len(s.Purpose.Value) > maxPurpose {
+		t.fail("purpose", "is longer than %d bytes", maxPurpose)
+	}
 	s.Store = r.path(t.text("store", true))
 	for _, source := range t.texts("sources", true) {
 		s.Sources = append(s.Sources, r.path(source))
@@ -73,6 +78,9 @@ func (r *reader) document(t *table, v Vocabulary) {
 	s.MaxDrift = t.ratio("max-drift")
 	s.Keep = t.whole("keep", 1, maxKeep)
 	s.State, s.Metrics = r.path(t.text("state", false)), r.path(t.text("metrics", false))
+	if s.Report = r.path(t.text("report", false)); s.Report.Value != "" && !strings.EqualFold(filepath.Ext(s.Report.Value), ".html") {
+		t.fail("report", "%s: want a name that ends in .html", tomlfile.Quote(filepath.Base(s.Report.Value)))
+	}
 	s.Ingest = t.settings(v.Ingest)
 	r.selections(t, v.Selection)
 	for _, kind := range Kinds() {

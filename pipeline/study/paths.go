@@ -82,7 +82,7 @@ func (r *reader) read(v Vocabulary) []use {
 // written are the paths that a run writes, in the order of the file.
 func (r *reader) written() []use {
 	s := r.study
-	out := []use{{s.Store, "store"}, {s.State, "state"}, {s.Metrics, "metrics"}}
+	out := []use{{s.Store, "store"}, {s.State, "state"}, {s.Metrics, "metrics"}, {s.Report, "report"}}
 	for _, p := range s.Products {
 		for _, f := range p.Files {
 			out = append(out, use{f.Text, p.Path() + ".files"})

@@ -11,6 +11,7 @@ type Study struct {
 	Dir  string // the folder that relative paths begin at
 
 	Name             Text
+	Purpose          Text // for people
 	Store            Text
 	Sources          []Text // files, archives and folders
 	Include, Exclude []Pattern
@@ -21,6 +22,7 @@ type Study struct {
 	Keep     int // editions to keep; 0 where the file does not say
 	State    Text
 	Metrics  Text
+	Report   Text // the page of all answers
 
 	Selections []Selection // in the order of the file, as are Products
 	Products   []Product
@@ -92,6 +94,7 @@ const (
 	TXT  Format = "txt" // tables for people
 	SVG  Format = "svg" // figures
 	PNG  Format = "png"
+	HTML Format = "html" // the report, of no single product
 )
 
 // IsFigure reports whether a file of the format is a figure.

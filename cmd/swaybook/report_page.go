@@ -1,0 +1,215 @@
+package main
+
+import (
+	"cmp"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"path/filepath"
+	"slices"
+	"strconv"
+	"strings"
+	"time"
+
+	"swaybook/db"
+	"swaybook/pipeline/condition"
+	"swaybook/query"
+	"swaybook/query/chart"
+	"swaybook/query/report"
+)
+
+// pageOf is the report as an answer that is written as other products are.
+type pageOf struct {
+	unmeasured
+	*report.Page
+}
+
+func (p pageOf) Write(w io.Writer, _ query.Format) error     { return p.Page.Write(w) }
+func (p pageOf) HasFigure() bool                             { return false }
+func (p pageOf) Draw(io.Writer, chart.Format) error          { return errNoFigure }
+func (p pageOf) Remarks() string                             { return "" }
+func (p pageOf) Section(string, report.Names) report.Section { return report.Section{} }
+
+// paginator makes the report of a study of an edition, from the answers to its products.
+type paginator struct {
+	plan    *studyPlan
+	outputs *outputs
+	edition int64
+	drift   *driftReport // since the edition before; nil where it is not known yet
+	names   report.Names
+}
+
+// page is the report. The edition before it, by which drift is told, is the last that is
+// kept, so that the same store gives the same page whoever makes it.
+func (m *paginator) page(ctx context.Context) (*report.Page, error) {
+	m.names = report.Names{"content": true, "provenance": true}
+	run, err := m.outputs.store.RunDetails(ctx, m.edition)
+	if err != nil {
+		return nil, err
+	}
+	p := &report.Page{Title: m.plan.study.Name.Value, Purpose: m.plan.study.Purpose.Value, Caution: query.Caution}
+	for i := range m.plan.products {
+		p.Sections = append(p.Sections, m.product(&m.plan.products[i]))
+	}
+	for _, add := range []func(context.Context, *report.Page, *db.RunDetails) error{m.addRecords, m.addRejections, m.addDrift, m.addMethods, m.addProvenance} {
+		if err := add(ctx, p, run); err != nil {
+			return nil, err
+		}
+	}
+	return p, nil
+}
+
+// product is the section of a product, of which the answer is known.
+func (m *paginator) product(p *product) report.Section {
+	id := m.names.ID(p.path)
+	r := m.outputs.answers[p.path]
+	if r.empty != nil {
+		return report.Section{ID: id, Title: p.path, Lines: []string{"No answer: " + r.empty.Error()}}
+	}
+	s := r.answer.Section(id, m.names)
+	s.Lines = append([]string{p.path}, s.Lines...)
+	return s
+}
+
+// addRecords says what is held, what it is worth, and where it is from.
+func (m *paginator) addRecords(ctx context.Context, p *report.Page, run *db.RunDetails) error {
+	q := query.RecordsQuestion{}
+	q.AsOf = m.edition
+	a, err := q.Ask(ctx, m.outputs.store)
+	if empty, ok := errors.AsType[*query.EmptyError](err); ok {
+		p.Summary = append(p.Summary, report.Fact{Name: "records", Value: empty.Error()})
+		return nil
+	}
+	if err != nil {
+		return err
+	}
+	held := a.Held()
+	p.Summary = []report.Fact{
+		{Name: "records", Value: fmt.Sprintf("%d of %d earthquakes at %d stations", held.Records, held.Events, held.Stations)},
+		{Name: "components", Value: strconv.Itoa(held.Components)},
+		{Name: "recipe", Value: run.Generation.Recipe.Name},
+		{Name: "state of the store", Value: fmt.Sprintf("edition %d, by a run of %s", m.edition, run.Started.UTC().Format(time.DateTime+" UTC"))},
+	}
+	s := report.Of(m.names.ID("quality"), a.Quality())
+	p.Sections = append(p.Sections, s)
+	return nil
+}
+
+// addRejections lists what could not be stored.
+func (m *paginator) addRejections(ctx context.Context, p *report.Page, _ *db.RunDetails) error {
+	a, err := query.Rejections(ctx, m.outputs.store, m.edition)
+	if err != nil {
+		return err
+	}
+	p.Summary = append(p.Summary, report.Fact{Name: "rejected", Value: strconv.Itoa(len(a.Rows))})
+	s := report.Of(m.names.ID("rejected"), a.Sheet())
+	if len(a.Rows) == 0 {
+		s.Tables, s.Lines = nil, []string{"Nothing was rejected."}
+	}
+	p.Sections = append(p.Sections, s)
+	return nil
+}
+
+// addDrift says what changed against the edition before.
+func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDetails) error {
+	s := report.Section{ID: m.names.ID("changes"), Title: "Changes since the last edition"}
+	if run.Before == 0 {
+		s.Lines = []string{"No edition before is kept."}
+		p.Sections = append(p.Sections, s)
+		return nil
+	}
+	if m.drift == nil || m.drift.Since != run.Before {
+		var err error
+		if m.drift, _, err = m.outputs.drift(ctx, m.plan.asked(), m.edition, run.Before, nil, func(int, int) {}); err != nil {
+			return err
+		}
+	}
+	s.Lines = []string{fmt.Sprintf("Edition %d against edition %d.", m.edition, run.Before)}
+	var text strings.Builder
+	if m.drift.printMakers(&printer{w: &text}); text.Len() > 0 {
+		s.Lines = append(s.Lines, strings.Split(strings.TrimSpace(text.String()), "\n")...)
+	}
+	s.Tables = m.drift.tables()
+	if len(s.Tables) == 0 {
+		s.Lines = append(s.Lines, "All figures and motions are as before.")
+	}
+	p.Sections = append(p.Sections, s)
+	return nil
+}
+
+// tables are the changes, and what happened to the motions.
+func (d *driftReport) tables() (out []report.Table) {
+	changes := query.Table{Caption: "Greatest changes", Columns: []query.Column{
+		{Name: "product", IsWord: true}, {Name: "of", IsWord: true}, {Name: "figure", IsWord: true}, {Name: "before"}, {Name: "after"}, {Name: "change"}}}
+	causes := query.Table{Caption: "What happened to motions", Columns: []query.Column{
+		{Name: "product", IsWord: true}, {Name: "cause", IsWord: true}, {Name: "motions"}, {Name: "first of them", IsWord: true}}}
+	for i := range d.Products {
+		one := &d.Products[i]
+		for _, f := range one.Largest[:min(len(one.Largest), shownFigures)] {
+			changes.Rows = append(changes.Rows, []string{one.Product, f.Of, f.Figure, numberWords(f.Before), numberWords(f.After), changeWords(f.Change)})
+		}
+		for _, c := range one.Causes {
+			causes.Rows = append(causes.Rows, []string{one.Product, c.Cause, strconv.Itoa(c.Count), strings.Join(c.Codes[:min(len(c.Codes), shownFigures)], ", ")})
+		}
+	}
+	for _, t := range []query.Table{changes, causes} {
+		if len(t.Rows) > 0 {
+			out = append(out, report.Table{Table: t})
+		}
+	}
+	return out
+}
+
+func (m *paginator) addMethods(_ context.Context, p *report.Page, run *db.RunDetails) error {
+	recipe := run.Generation.Recipe
+	p.Sections = append(p.Sections, report.Methods(m.names.ID("methods"), recipe.Name, recipeWords(recipe)))
+	return nil
+}
+
+// addProvenance says of what and by what the page is made.
+func (m *paginator) addProvenance(ctx context.Context, p *report.Page, run *db.RunDetails) error {
+	digest := ""
+	err := m.outputs.store.ViewAsOf(ctx, m.edition, func(s *db.Snapshot) (err error) {
+		digest, err = s.Digest(ctx)
+		return err
+	})
+	if err != nil {
+		return err
+	}
+	g := &run.Generation
+	p.Provenance = []report.Fact{
+		{Name: "study", Value: filepath.Base(m.plan.study.File)},
+		{Name: "store", Value: filepath.Base(m.plan.study.Store.Value)},
+		{Name: "edition", Value: strconv.FormatInt(m.edition, 10)},
+		{Name: "run", Value: fmt.Sprintf("%d, %s, began %s", run.ID, run.Kind, run.Started.UTC().Format(time.RFC3339))},
+		{Name: "program of the run", Value: cmp.Or(run.Program, "-")},
+		{Name: "program of this page", Value: program()},
+		{Name: "solver", Value: g.Solver},
+		{Name: "recipe", Value: g.Recipe.Name + " " + g.Recipe.Hash()},
+		{Name: "periods", Value: fmt.Sprintf("%d from %g to %g s", len(g.Grid.PeriodsS), slices.Min(g.Grid.PeriodsS), slices.Max(g.Grid.PeriodsS))},
+		{Name: "dampings", Value: dampingWords(g.Grid.Dampings)},
+		{Name: "digest of what is published (verify --digest)", Value: digest},
+	}
+	return nil
+}
+
+// recipeWords are the steps of a recipe in words, none of one that another version wrote.
+func recipeWords(r db.Recipe) (words []string) {
+	recipe, err := condition.FromCanonical(r.Steps)
+	if err != nil {
+		return nil
+	}
+	for _, s := range newRecipeRow(recipe, r.Hash()).Steps {
+		words = append(words, s.Words)
+	}
+	return words
+}
+
+func dampingWords(dampings []float64) string {
+	words := make([]string, len(dampings))
+	for i, d := range dampings {
+		words[i] = percentWords(d)
+	}
+	return strings.Join(words, ", ")
+}

@@ -1,0 +1,24 @@
+package report
+
+import "swaybook/query"
+
+// methods are what every result rests on, with the sources.
+var methods = [][]string{
+	{"Response", "The damped oscillator of one degree of freedom under ground acceleration linear between samples, by the exact recurrence, at rest before the first sample and ringing free after the last. Spectral displacement SD is the greatest relative displacement over the whole motion, between samples too.", "Nigam and Jennings 1969"},
+	{"Spectra", "Pseudo-velocity PSV = ω·SD and pseudo-acceleration PSA = ω²·SD, ω = 2π/T.", "Chopra, Dynamics of Structures"},
+	{"All directions", "rotd50 and rotd100 are the median and the maximum, period by period, over all horizontal directions.", "Boore 2010"},
+	{"Percentiles", "Order statistics with straight lines between; none where the sample does not support it, from 1/(n + 1) to n/(n + 1).", "Hyndman and Fan 1996, type 7; Gumbel 1958"},
+	{"Demand", "Base shear is mass times PSA, base moment that times the height, peak strain energy ½·m·PSV².", "Chopra, Dynamics of Structures"},
+	{"Measures", "Arias intensity, cumulative absolute velocity, significant and bracketed durations, mean period.", "Arias 1970; EPRI 1988; Trifunac and Brady 1975; Bolt 1973; Rathje, Abrahamson and Bray 1998"},
+	{"Usable periods", "A motion counts only at periods at which its filters and its sampling leave something to believe.", "common practice"},
+}
+
+// Methods is the section of how everything was computed. The recipe is told step by step.
+func Methods(id, recipe string, steps []string) Section {
+	t := query.Table{Columns: []query.Column{{Name: "method", IsWord: true}, {Name: "what is done", IsWord: true}, {Name: "source", IsWord: true}}, Rows: methods}
+	s := Section{ID: id, Title: "Methods", Tables: []Table{{Table: t}}, Lines: []string{"Motions are conditioned by the recipe " + recipe + "."}}
+	for _, step := range steps {
+		s.Remarks = append(s.Remarks, recipe+": "+step)
+	}
+	return s
+}

@@ -1,0 +1,114 @@
+package report
+
+import (
+	"fmt"
+	"slices"
+
+	"swaybook/query"
+	"swaybook/query/chart"
+)
+
+// Names gives IDs of which each is one of a kind in a page.
+type Names map[string]bool
+
+// ID makes an ID of words.
+func (n Names) ID(words ...string) string {
+	base := Anchor(words...)
+	if base == "" {
+		base = "part"
+	}
+	id := base
+	for i := 2; n[id]; i++ {
+		id = fmt.Sprintf("%s-%d", base, i)
+	}
+	n[id] = true
+	return id
+}
+
+// longRows is from how many rows on a table is closed at first, and searched; detailed is of
+// how many structures, the worst, a page tells all.
+const longRows, detailed = 40, 200
+
+// Of is a section with what a sheet says.
+func Of(id string, s *query.Sheet) Section {
+	out := Section{ID: id, Title: s.Title, Lines: s.Lines, Remarks: s.Remarks}
+	for _, t := range s.Tables {
+		out.Tables = append(out.Tables, Table{Table: t, IsLong: len(t.Rows) > longRows, HasFilter: len(t.Rows) > 8})
+	}
+	return out
+}
+
+// stripped is a chart that knows where periods lie.
+type stripped interface {
+	chart.Chart
+	Strips(chart.Size) []chart.Strip
+}
+
+// Spectrum is the section of spectra: the chart, the four-way chart where there is one, and
+// the table. The answer has its spectra.
+func Spectrum(id string, a *query.SpectrumAnswer, units query.Units, marks []chart.Mark, isLinear bool) Section {
+	out := Of(id, a.Sheet(units))
+	figure := func(caption string, c stripped, size chart.Size) {
+		f := Figure{Caption: caption, Chart: c, Size: size}
+		for _, s := range c.Strips(size) {
+			f.Strips = append(f.Strips, Strip{s, a.ValuesAt(s.Period, units)})
+		}
+		if f.Strips != nil { // else there is nothing to draw
+			out.Figures = append(out.Figures, f)
+		}
+	}
+	figure("Spectra of all motions with their percentiles; the strip counts the motions that hold them up.", a.Chart(units, marks, isLinear), chart.Half)
+	if a.HasFourWay() {
+		figure("Four-way chart: pseudo-velocity upwards, displacement and pseudo-acceleration along the diagonals.", a.FourWay(units, marks), chart.Square)
+	}
+	return out
+}
+
+// comeFirst puts columns before the others.
+func comeFirst(t *query.Table, names ...string) {
+	var order []int
+	isFirst := func(i int) bool { return slices.Contains(names, t.Columns[i].Name) }
+	for i := range t.Columns {
+		if isFirst(i) {
+			order = append(order, i)
+		}
+	}
+	for i := range t.Columns {
+		if !isFirst(i) {
+			order = append(order, i)
+		}
+	}
+	t.Columns = picked(t.Columns, order)
+	for i := range t.Rows {
+		t.Rows[i] = picked(t.Rows[i], order)
+	}
+}
+
+func picked[T any](list []T, order []int) []T {
+	out := make([]T, len(order))
+	for i, at := range order {
+		out[i] = list[at]
+	}
+	return out
+}
+
+// Portfolio is the section of many structures, the worst first, with a part for each of them
+// as far as the page has room.
+func Portfolio(id string, a *query.PortfolioAnswer, units query.Units, names Names) Section {
+	a = a.WorstFirst()
+	out := Of(id, a.Sheet(units))
+	out.Tables[0].IsLong, out.Tables[0].HasFilter = false, true
+	comeFirst(&out.Tables[0].Table, "structure", "ratio", "limit", "above")
+	links := map[string]string{}
+	for i := range a.Rows[:min(len(a.Rows), detailed)] {
+		row := &a.Rows[i]
+		part := Of(names.ID(id, row.Structure.ID), row.Sheet(a, units))
+		links[out.Tables[0].Rows[i][0]] = part.ID
+		out.Parts = append(out.Parts, part)
+	}
+	out.Tables[0].Links = map[int]map[string]string{0: links}
+	if n := len(a.Rows); n > detailed {
+		out.Remarks = append(out.Remarks, fmt.Sprintf("note: details are of the worst %d of %d structures; JSON has all", detailed, n))
+	}
+	return out
+}

@@ -1,0 +1,86 @@
+package query
+
+import (
+	"cmp"
+	"fmt"
+	"math"
+	"slices"
+)
+
+// WorstFirst is the answer with the structures in the order of their ratios to capacities, the
+// greatest first, and those without behind them as they were.
+func (a *PortfolioAnswer) WorstFirst() *PortfolioAnswer {
+	out := *a
+	out.Rows = slices.Clone(a.Rows)
+	ratio := func(r *PortfolioRow) float64 {
+		if worst := r.worst(a.Percentiles); worst != nil {
+			return worst.ratio
+		}
+		return math.Inf(-1)
+	}
+	slices.SortStableFunc(out.Rows, func(x, y PortfolioRow) int { return cmp.Compare(ratio(&y), ratio(&x)) })
+	return &out
+}
+
+// Sheet is all that the answer says of one structure: of what was asked, the statistics of
+// every quantity, and the ratios to its capacities.
+func (r *PortfolioRow) Sheet(a *PortfolioAnswer, units Units) *Sheet {
+	s := r.Structure
+	out := &Sheet{Title: printable(s.ID), Lines: []string{s.text(units)}}
+	if s.Name != "" {
+		out.Title += ", " + printable(s.Name)
+	}
+	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
+	at := r.statistics(r.Quantities, list, &a.Selection, units)
+	out.Tables = append(out.Tables, at.export("At the period"))
+	if len(s.Modes) > 0 {
+		out.Tables[0].Caption = "Of all modes"
+	}
+	if r.Band != nil {
+		over := r.statistics(r.Band.Quantities, list, &a.Selection, units)
+		out.Tables = append(out.Tables, over.export(r.Band.title()))
+	}
+	if len(r.Limits) > 0 {
+		limits := r.ratios(a)
+		out.Tables = append(out.Tables, limits.export("Demand over capacity"))
+	}
+	return out
+}
+
+// statistics has a row a quantity that is known.
+func (r *PortfolioRow) statistics(quantities []Quantity, list []statistic, selection *SelectionReport, units Units) table {
+	t := table{columns: []column{{name: "quantity", isWord: true}, {name: "unit", isWord: true}, {name: "count"}}}
+	t.columns = append(append(t.columns, columns(list, "")...), column{name: "governing", isWord: true})
+	for _, q := range quantities {
+		u, ok := quantityUnits[q.Name]
+		if q.Reduction == nil || !ok {
+			continue
+		}
+		name, per := u.in(units)
+		row := append([]string{u.title, name, fmt.Sprint(q.Reduction.Count)}, cells(list, q.Reduction, per)...)
+		t.add(append(row, selection.governingText(q.Reduction))...)
+	}
+	return t
+}
+
+// ratios has a row a capacity.
+func (r *PortfolioRow) ratios(a *PortfolioAnswer) table {
+	t := table{columns: []column{{name: "capacity", isWord: true}, {name: "limit"}, {name: "unit", isWord: true}}}
+	for _, p := range a.Percentiles {
+		t.columns = append(t.columns, column{name: "ratio p" + percentKey(p)})
+	}
+	t.columns = append(t.columns, column{name: "greatest"}, column{name: "above"}, column{name: "count"}, column{name: "governing", isWord: true})
+	for _, l := range r.Limits {
+		row := []string{limitWords[l.Name].title, figure(l.Limit), limitWords[l.Name].unit}
+		for i := range a.Percentiles {
+			row = append(row, figure(l.Percentiles[i]))
+		}
+		t.add(append(row, figure(l.Max), percentTitle(l.Above), fmt.Sprint(l.Count), l.Governing)...)
+	}
+	return t
+}
+
+// limitWords are the capacities for people, in SI.
+var limitWords = map[string]struct{ title, unit string }{
+	"displacement": {"displacement", "m"}, "base_shear": {"base shear", "N"}, "drift": {"displacement over height", "1"},
+}
