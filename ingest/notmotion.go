@@ -13,6 +13,8 @@ func notMotion(t *Text) error {
 	n := nextText(t, 1)
 	line := bytes.ToLower(bytes.TrimSpace(t.Bytes(n)))
 	switch {
+	case isHTML(t, n) && isReport(t, n):
+		return &NotMotionError{"a report, not a record"}
 	case isHTML(t, n):
 		return refuse(n, "", "an HTML page, not a record: a download that went wrong?")
 	case bytes.HasPrefix(line, []byte("<?xml")):
@@ -32,6 +34,16 @@ func isHTML(t *Text, line int) bool {
 	for n := line; n < line+5; n++ {
 		text := bytes.ToLower(bytes.TrimSpace(t.Bytes(n)))
 		if bytes.HasPrefix(text, []byte("<!doctype html")) || bytes.HasPrefix(text, []byte("<html")) {
+			return true
+		}
+	}
+	return false
+}
+
+// isReport looks for what this program's own pages say of themselves at their head.
+func isReport(t *Text, line int) bool {
+	for n := line; n < line+8; n++ {
+		if bytes.Contains(t.Bytes(n), []byte(`<meta name="generator" content="swaybook">`)) {
 			return true
 		}
 	}
@@ -92,6 +104,8 @@ func SkipByName(base string) string {
 		return "a licence"
 	case strings.HasSuffix(name, ".md") || strings.HasSuffix(name, ".markdown"):
 		return "a Markdown text"
+	case strings.HasSuffix(name, ".toml"):
+		return "a TOML text, as of a study"
 	}
 	return ""
 }

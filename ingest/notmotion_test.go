@@ -14,6 +14,7 @@ func TestNotMotion(t *testing.T) {
 		{"catalogue with semicolons", "# invented\n\nEvent; Station; Distance km\ne;s;10\n", "a catalogue of records, not a record", ""},
 		{"ordinates", "record,component,damping,period_s,sd_m\nr,h1,0.05,0.1,1e-3\n", "spectral ordinates exported as a table, not a time series", ""},
 		{"page", "\n<!DOCTYPE HTML><html>", "", "case:2: an HTML page, not a record: a download that went wrong?"},
+		{"report", "<!DOCTYPE html>\n<html lang=\"en\">\n<head>\n<meta charset=\"utf-8\">\n<meta name=\"generator\" content=\"swaybook\">\n", "a report, not a record", ""},
 		{"page in XML", "<?xml version='1.0'?>\n<html xmlns='x'>", "", "case:1: an HTML page, not a record: a download that went wrong?"},
 		{"XML", "<?xml version='1.0'?>\n<quake/>", "an XML document, not a record", ""},
 		{"JSON", "{\n  \"unit\": \"g\"\n}\n", "a JSON document, not a record; what it says of records belongs in the catalogue", ""},
@@ -40,7 +41,7 @@ func TestNotMotion(t *testing.T) {
 
 func TestSkipByName(t *testing.T) {
 	for name, want := range map[string]string{
-		"README": "a readme", "Readme.txt": "a readme", "README.md": "a readme", "notes.md": "a Markdown text", "x.markdown": "a Markdown text",
+		"README": "a readme", "Readme.txt": "a readme", "README.md": "a readme", "notes.md": "a Markdown text", "x.markdown": "a Markdown text", "study.TOML": "a TOML text, as of a study",
 		"LICENSE": "a licence", "licence.txt": "a licence", "COPYING": "a licence", ".gitignore": "a hidden file", "._quake.v2": "a hidden file",
 		".DS_Store": "a file of the operating system", "Thumbs.db": "a file of the operating system", "desktop.ini": "a file of the operating system",
 		"~$list.xlsx": "a file of the operating system",

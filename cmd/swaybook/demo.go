@@ -20,7 +20,7 @@ func demoCommand() *cli.Command {
 		Name:  "demo",
 		Usage: "invent a region's records and run the whole job on them",
 		Description: "Writes record files in several formats, with a catalogue, for a region that does not exist; then ingests them and\n" +
-			"shows a spectrum and the demands of invented structures. The store is DIR/demo.db unless --store names another.",
+			"shows a spectrum and the demands of invented structures, and writes a report of them. The store is DIR/demo.db unless --store names another.",
 		Flags: []cli.Flag{
 			&cli.StringFlag{Name: "dir", Value: "swaybook-demo", Usage: "folder for the files, `DIR`"},
 			&cli.IntFlag{Name: "events", DefaultText: "the region's twelve", Usage: "earthquakes"},
@@ -34,7 +34,10 @@ func demoCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			return runDemo(c.Context, o, c.App.Writer)
+			if err := runDemo(c.Context, o, c.App.Writer); err != nil || o.filesOnly {
+				return err
+			}
+			return demoReport(c, o, c.App.Writer)
 		},
 	}
 }
@@ -149,7 +152,7 @@ func demoSpectrum(ctx context.Context, store *db.Store, where, periods string, i
 }
 
 func demoQueries(ctx context.Context, store *db.Store, name string, w io.Writer) error {
-	const near = "magnitude >= 5.5 and distance_km < 60"
+	const near = demo.Near
 	p := &printer{w: w}
 	p.printf("\n$ swaybook --store %s query spectrum --where '%s' --periods %s\n", name, near, demoPeriods)
 	if err := demoSpectrum(ctx, store, near, demoPeriods, false, w); err != nil {
@@ -170,7 +173,35 @@ func demoQueries(ctx context.Context, store *db.Store, name string, w io.Writer)
 			return err
 		}
 	}
-	p.printf("\nThe store is %s. Ask it something else: swaybook --store %s query --help\n", name, name)
+	return p.err
+}
+
+// demoReport writes the report of a study of the region, and says where all of it is.
+func demoReport(c *cli.Context, o demoOptions, w io.Writer) error {
+	store := o.store
+	if rel, err := filepath.Rel(o.dir, store); err == nil && filepath.IsLocal(rel) {
+		store = rel
+	} else if store, err = filepath.Abs(store); err != nil {
+		return err
+	}
+	study, err := demo.WriteStudy(o.dir, store)
+	if err != nil {
+		return err
+	}
+	p := &printer{w: w}
+	p.printf("\n$ swaybook report %s\n", quoted(study))
+	if p.err != nil {
+		return p.err
+	}
+	plan, err := readReportPlan(c, study)
+	if err != nil {
+		return err
+	}
+	if err := makeReport(c, plan, plan.study.Report.Value); err != nil {
+		return err
+	}
+	p.printf("\nThe store is %s. Ask it something else: swaybook --store %s query --help\n", quoted(o.store), quoted(o.store))
+	p.printf("The report is %s\n", quoted(filepath.Join(o.dir, "report.html")))
 	return p.err
 }
 

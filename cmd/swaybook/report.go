@@ -39,16 +39,20 @@ func reportCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			err = withStoreAt(c, plan.study.Store.Value, func(ctx context.Context, store *db.Store) error {
-				return writeReport(ctx, store, plan, file)
-			})
-			if err != nil {
-				return err
-			}
-			_, err = fmt.Fprintf(c.App.Writer, "written %s\n", file)
-			return err
+			return makeReport(c, plan, file)
 		},
 	}
+}
+
+// makeReport writes the report of a plan's store, and says so.
+func makeReport(c *cli.Context, plan *studyPlan, file string) error {
+	err := withStoreAt(c, plan.study.Store.Value, func(ctx context.Context, store *db.Store) error {
+		return writeReport(ctx, store, plan, file)
+	})
+	if err == nil {
+		_, err = fmt.Fprintf(c.App.Writer, "written %s\n", file)
+	}
+	return err
 }
 
 // reportPlace is the file that the report goes to.

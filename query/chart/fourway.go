@@ -66,7 +66,9 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 		diagonals[i].write(&f)
 	}
 	names := f
-	names.Min.Y += lineRoom * vg.Length(4*len(s.Readings))
+	if n := len(s.Readings); n > 0 {
+		names.Min.Y += lineRoom * vg.Length(4*n+1)
+	}
 	base.drawCurves(&f, &names)
 	f.axes(true)
 	for i := range s.Readings {
