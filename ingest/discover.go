@@ -24,6 +24,8 @@ type Found struct {
 	Path string // as it can be opened
 	Rel  string // relative to the path given, with slashes; the base name of a file given itself
 	Err  error  // why a folder, or the target of a link, could not be read
+	// IsFolder says that it is a folder, of which some or all could not be listed.
+	IsFolder bool
 }
 
 // Member is the member of that name in the file, an archive. Its paths can not be
@@ -96,7 +98,7 @@ func (w *walker) folder(dir, rel string) {
 		physical, err = filepath.Abs(physical)
 	}
 	if err != nil {
-		w.found = append(w.found, Found{Path: dir, Rel: rel, Err: err})
+		w.found = append(w.found, Found{Path: dir, Rel: rel, Err: err, IsFolder: true})
 		return
 	}
 	if w.listed[physical] {
@@ -105,7 +107,7 @@ func (w *walker) folder(dir, rel string) {
 	w.listed[physical] = true
 	entries, err := os.ReadDir(dir)
 	if err != nil {
-		w.found = append(w.found, Found{Path: dir, Rel: rel, Err: fmt.Errorf("list folder: %w", cause(err))})
+		w.found = append(w.found, Found{Path: dir, Rel: rel, Err: fmt.Errorf("list folder: %w", cause(err)), IsFolder: true})
 	}
 	for _, e := range entries { // what could be read before an error, too
 		w.entry(filepath.Join(dir, e.Name()), path.Join(rel, e.Name()), e)

@@ -51,6 +51,9 @@ func Reprocess(ctx context.Context, store Store, opts Options, study Study) (Rep
 	if err != nil {
 		return Reprocessed{}, err
 	}
+	if err := checkListed(files, opts); err != nil {
+		return Reprocessed{}, err
+	}
 	p := &reprocessing{study: study, seen: scan(files, opts)}
 	run, err := p.begin(ctx, store, opts)
 	if err != nil {
@@ -84,6 +87,18 @@ type reprocessing struct {
 // racyNS is how shortly before a run a file may have changed that can change again without
 // a new time: two seconds, the coarsest clock of file systems.
 const racyNS = 2e9
+
+// checkListed refuses to go on where a folder could not be listed, unless the study leaves it
+// out: what it holds would be taken for gone.
+func checkListed(files []ingest.Found, opts Options) error {
+	var errs []error
+	for _, f := range files {
+		if f.IsFolder && (f.Rel == "" || opts.Takes(f.Rel, true)) {
+			errs = append(errs, fmt.Errorf("%s: %w; exclude it if it is none of the study's", f.Path, f.Err))
+		}
+	}
+	return errors.Join(errs...)
+}
 
 // scan looks at the files before any is read: what changes while it is read is seen as
 // changed by the next run.

@@ -126,31 +126,35 @@ func TestReadOnlyFileSystem(t *testing.T) {
 	s.finished("writable", after)
 }
 
-// Files and folders among the records that may not be read are rejected with their cause,
-// by a run that reads the others; once they may be, the next run reads them, though
-// nothing about them has changed.
+// A file among the records that may not be read is rejected with its cause, by a run that
+// reads the others; once it may be, the next run reads it, though nothing about it has
+// changed. A folder that may not be read could hold anything: the run fails, and nothing is
+// changed, unless the study leaves the folder out.
 func TestRecordsMayNotBeRead(t *testing.T) {
 	s, asNobody := nobodysStudy(t)
 	mustRun(t, asNobody(s.reprocess()))
 	want := s.left()
 	folders, err := filepath.Glob(s.at("records/q*"))
 	s.check(err)
-	for what, paths := range map[string][]string{
-		"file":   {s.at("records/NWT_CDH000.AT2")},
-		"folder": folders[:1],
+	for what, c := range map[string]struct {
+		paths []string
+		code  int
+	}{
+		"file":   {[]string{s.at("records/NWT_CDH000.AT2")}, exitRejected},
+		"folder": {folders[:1], exitFailed},
 	} {
-		s.changeMode(0, paths, func() {
+		s.changeMode(0, c.paths, func() {
 			// What was read is not read again unasked; what could not be is.
 			for _, args := range [][]string{{"--rehash"}, nil} {
 				var out strings.Builder
 				cmd := asNobody(s.reprocess(args...))
-				cmd.Stdout = &out
-				if cmd.Run(); cmd.ProcessState.ExitCode() != exitRejected || !strings.Contains(out.String(), "permission denied") {
+				cmd.Stdout, cmd.Stderr = &out, &out
+				if cmd.Run(); cmd.ProcessState.ExitCode() != c.code || !strings.Contains(out.String(), "permission denied") {
 					t.Errorf("%s: exit code %d, %s", what, cmd.ProcessState.ExitCode(), out.String())
 				}
 			}
-			if got := s.left(); got.digest == want.digest {
-				t.Errorf("%s: its records are there still", what)
+			if got := s.left(); (got.digest == want.digest) != (c.code == exitFailed) {
+				t.Errorf("%s: its records are there: %v", what, got.digest == want.digest)
 			}
 		})
 		mustRun(t, asNobody(s.reprocess()))
