@@ -42,6 +42,19 @@ func (e Energy) total() float64 {
 // Design for Nuclear Power Plants, MIT Press, 1970.
 func (e Energy) Arias() float64 { return math.Pi / (2 * StandardGravity) * e.total() }
 
+// Shares returns the share of the whole that has come by each sample, NaN where there is
+// none: the build-up of Arias intensity.
+//
+// Source: R. L. Husid, Características de Terremotos, Análisis General, Revista del IDIEM 8,
+// 1969, 21–42 (from memory).
+func (e Energy) Shares() []float64 {
+	out := make([]float64, len(e.sums))
+	for i, sum := range e.sums {
+		out[i] = sum / e.total()
+	}
+	return out
+}
+
 // When returns the time in s, from the first sample, by which a share of the whole has
 // come, 0 where there is none. Between samples the build-up is taken for linear.
 func (e Energy) When(share float64) float64 {

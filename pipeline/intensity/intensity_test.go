@@ -51,6 +51,9 @@ func TestConstant(t *testing.T) {
 	expect(t, "Arias intensity", e.Arias(), math.Pi/(2*StandardGravity)*90, 1e-12)
 	expect(t, "absolute velocity", AbsoluteVelocity(a, 0.01), 30, 1e-12)
 	expect(t, "bracketed duration", BracketedDuration(a, 0.01, 3), 10, 1e-12)
+	shares := e.Shares()
+	expect(t, "share by 2.5 s", shares[250], 0.25, 1e-12)
+	expect(t, "share in all", shares[1000], 1, 0)
 }
 
 // A triangle from 1 through 0 to -1: |a| is two triangles, a² a parabola.

@@ -59,24 +59,32 @@ func (s *groundStep) displacementAt(t float64) float64 {
 func (s *groundStep) peakVelocity() float64 {
 	peak := math.Abs(s.velocityAt(1))
 	if opposite(s.a, s.a+s.slope) {
-		peak = max(peak, math.Abs(s.velocityAt(-s.a/s.slope)))
+		peak = max(peak, math.Abs(s.velocityAt(s.velocityTurn())))
 	}
 	return peak
 }
 
+// velocityTurn is when a passes zero.
+func (s *groundStep) velocityTurn() float64 { return -s.a / s.slope }
+
 // peakDisplacement returns the greatest |u|, at the end or where v passes zero.
-// The zeros of v + a·t + slope/2·t² are taken in the form that does not cancel.
 func (s *groundStep) peakDisplacement() float64 {
 	peak := math.Abs(s.displacementAt(1))
-	discriminant := float64(s.a*s.a) - float64(2*s.slope*s.v)
-	if !(discriminant >= 0) {
-		return peak
-	}
-	q := -(s.a + math.Copysign(math.Sqrt(discriminant), s.a))
-	for _, t := range [2]float64{q / s.slope, 2 * s.v / q} {
+	for _, t := range s.displacementTurns() {
 		if t > 0 && t < 1 {
 			peak = max(peak, math.Abs(s.displacementAt(t)))
 		}
 	}
 	return peak
+}
+
+// displacementTurns are the zeros of v + a·t + slope/2·t², in the form that does not
+// cancel, NaN where there are none.
+func (s *groundStep) displacementTurns() [2]float64 {
+	discriminant := float64(s.a*s.a) - float64(2*s.slope*s.v)
+	if !(discriminant >= 0) {
+		return [2]float64{math.NaN(), math.NaN()}
+	}
+	q := -(s.a + math.Copysign(math.Sqrt(discriminant), s.a))
+	return [2]float64{q / s.slope, 2 * s.v / q}
 }
