@@ -3,7 +3,7 @@
 // list of what is held, and the export of ordinates.
 //
 // A question is a struct of typed fields (SpectrumQuestion, DemandQuestion,
-// RecordsQuestion, ExportQuestion) with a method Ask or Write; an answer is a
+// RecordsQuestion, RecordQuestion, ExportQuestion) with a method Ask or Write; an answer is a
 // struct with a method Write that renders it as a table, CSV or JSON. The
 // Parse functions turn the text that people write, quantities with units among
 // it, into those fields. What a person asked wrongly is a UsageError; a

@@ -42,7 +42,9 @@ func appendJSON(dst []byte, v any, depth int) ([]byte, error) {
 		return appendArray(dst, v, depth)
 	case []object:
 		return appendArray(dst, v, depth)
-	case string:
+	case []*RecordRow:
+		return appendArray(dst, v, depth)
+	case string, bool, *RecordRow:
 		return appendMarshalled(dst, v)
 	}
 	return dst, fmt.Errorf("write JSON: no rule for %T", v)

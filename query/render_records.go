@@ -146,13 +146,17 @@ func (r *RecordRow) csv(l *csvLine) {
 // "flag behind the recipe: sentence", joined with "; ".
 func (r *RecordRow) qualityWords() string {
 	words := make([]string, len(r.Quality))
-	for i, f := range r.Quality {
-		words[i] = f.Flag + ": " + f.Words
-		if f.Of == ofConditioned {
-			words[i] = f.Flag + " behind the recipe: " + f.Words
-		}
+	for i := range r.Quality {
+		words[i] = r.Quality[i].text()
 	}
 	return strings.Join(words, "; ")
+}
+
+func (f *FindingRow) text() string {
+	if f.Of == ofConditioned {
+		return f.Flag + " behind the recipe: " + f.Words
+	}
+	return f.Flag + ": " + f.Words
 }
 
 // Write renders the list. The error is a UsageError for an unknown format and

@@ -26,11 +26,11 @@ var layers = map[string][]string{
 	"pipeline/quality":   {"pipeline/signal", "pipeline/internal/elementary"}, // means and integrals
 	"pipeline/likeness":  {"pipeline/internal/elementary"},
 	"pipeline/signal":    {"pipeline/internal/elementary"},
-	"pipeline/spectrum":  {"pipeline/internal/kernel", "pipeline/internal/elementary"},                                                                                                            // the loops behind the solver
-	"query/report":       {"query", "query/chart"},                                                                                                                                                // answers on a page
-	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "query/chart", "pipeline/spectrum", "pipeline/condition", "pipeline/geodesy", "pipeline/siteclass"}, // the way out; never pipeline itself
-	"query/design":       {"query/stats", "ingest/tomlfile"},                                                                                                                                      // logarithms of the same bits everywhere; lines of keys
-	"query/mixed":        {"query/stats"},                                                                                                                                                         // logarithms that are the same everywhere
+	"query/report":       {"query", "query/chart"},                                                                                                                                                                                         // answers on a page
+	"pipeline/spectrum":  {"pipeline/internal/kernel", "pipeline/internal/elementary"},                                                                                                                                                     // the loops behind the solver
+	"query":              {"db", "query/stats", "query/modal", "query/design", "query/mixed", "query/chart", "pipeline/spectrum", "pipeline/condition", "pipeline/intensity", "pipeline/geodesy", "pipeline/siteclass", "ingest/tomlfile"}, // the way out; never pipeline itself; the nearest known code
+	"query/design":       {"query/stats", "ingest/tomlfile"},                                                                                                                                                                               // logarithms of the same bits everywhere; lines of keys
+	"query/mixed":        {"query/stats"},                                                                                                                                                                                                  // logarithms that are the same everywhere
 }
 
 // sqlImports are for db alone.

@@ -19,8 +19,12 @@ func plotFlag() cli.Flag {
 	return &cli.StringFlag{Name: "plot", Usage: "draw the answer in a `FILE` too, .svg or .png; one that is there is replaced"}
 }
 
-func axesFlag() cli.Flag {
-	return &cli.StringFlag{Name: "axes", DefaultText: "log", Usage: "of the figure: log, linear, or four-way (PSV, with diagonals of SD and PSA)"}
+func axesFlag(usage string) cli.Flag {
+	return &cli.StringFlag{Name: "axes", DefaultText: axesLog, Usage: usage}
+}
+
+func markFlag() cli.Flag {
+	return &cli.StringFlag{Name: "mark", Usage: "periods of structures to mark in the figure, a `LIST` of 0.8s, or bands 0.7:0.9"}
 }
 
 // The axes of figures.
@@ -40,8 +44,8 @@ type plotOptions struct {
 	marks  []chart.Mark
 }
 
-// newPlotOptions reads the flags of a figure.
-func newPlotOptions(o *plotOptions, c *cli.Context) error {
+// newPlotOptions reads the flags of a figure that can have these axes.
+func newPlotOptions(o *plotOptions, c *cli.Context, axes []string) error {
 	if !c.IsSet("plot") {
 		return exclude(c, []string{"axes", "mark"}, "--%s goes with --plot")
 	}
@@ -54,8 +58,8 @@ func newPlotOptions(o *plotOptions, c *cli.Context) error {
 	default:
 		return ofFlag("plot", usagef("--plot %q: want a file that ends in .svg or .png", o.file))
 	}
-	if o.axes = cmp.Or(c.String("axes"), axesLog); !slices.Contains(allAxes, o.axes) {
-		return ofFlag("axes", usagef("--axes %q: want %s", o.axes, strings.Join(allAxes, ", ")))
+	if o.axes = cmp.Or(c.String("axes"), axesLog); !slices.Contains(axes, o.axes) {
+		return ofFlag("axes", usagef("--axes %q: want %s", o.axes, strings.Join(axes, ", ")))
 	}
 	if o.axes == axesFourWay && c.IsSet("measure") && c.String("measure") != string(query.MeasurePSV) {
 		return ofFlag("axes", usagef("--axes four-way is of PSV, which tells SD and PSA too; leave out --measure"))

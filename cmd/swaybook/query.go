@@ -17,7 +17,7 @@ func queryCommand() *cli.Command {
 	return &cli.Command{
 		Name:        "query",
 		Usage:       "ask the store: spectra, demands, records",
-		Subcommands: []*cli.Command{querySpectrumCommand(), queryDemandCommand(), queryRecordsCommand()},
+		Subcommands: []*cli.Command{querySpectrumCommand(), queryDemandCommand(), queryRecordsCommand(), queryRecordCommand()},
 	}
 }
 
@@ -71,7 +71,6 @@ func formatFlag(choices string) cli.Flag {
 // newSelection reads the selection flags.
 func newSelection(c *cli.Context, component func(string) (query.Component, error), siting func(string) (query.Siting, error)) (s query.Selection, err error) {
 	s.Where, s.Scope.Event = c.String("where"), c.String("event")
-	s.AsOf = c.Int64(asOf)
 	s.IncludeDuplicates, s.IncludeUnknownDirections = c.Bool("include-duplicates"), c.Bool("include-unknown-directions")
 	s.IgnoreUsableBand = c.Bool("ignore-usable-band")
 	err = errors.Join(
@@ -86,10 +85,18 @@ func newSelection(c *cli.Context, component func(string) (query.Component, error
 	if c.IsSet("screen") {
 		err = errors.Join(err, parseInto(&s.Screen, c, "screen", query.ParseScreen))
 	}
-	if c.IsSet(asOf) && s.AsOf < 1 {
-		err = errors.Join(err, ofFlag(asOf, usagef("--as-of %d: want the number of a run", s.AsOf)))
+	var wrong error
+	s.AsOf, wrong = asOfRun(c)
+	return s, errors.Join(err, wrong)
+}
+
+// asOfRun is the run that a question reads, 0 for what is published.
+func asOfRun(c *cli.Context) (int64, error) {
+	run := c.Int64(asOf)
+	if c.IsSet(asOf) && run < 1 {
+		return run, ofFlag(asOf, usagef("--as-of %d: want the number of a run", run))
 	}
-	return s, err
+	return run, nil
 }
 
 func querySpectrumCommand() *cli.Command {
@@ -103,8 +110,8 @@ func querySpectrumCommand() *cli.Command {
 			asOfFlag(),
 			formatFlag("table, csv or json"),
 			plotFlag(),
-			axesFlag(),
-			&cli.StringFlag{Name: "mark", Usage: "periods of structures to mark in the figure, a `LIST` of 0.8s, or bands 0.7:0.9"},
+			axesFlag("of the figure: log, linear, or four-way (PSV, with diagonals of SD and PSA)"),
+			markFlag(),
 		),
 		Action: func(c *cli.Context) error {
 			o, err := newSpectrumOptions(c)
@@ -139,7 +146,7 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 		parseInto(&q.PeriodsS, c, "periods", query.ParsePeriods),
 		parseInto(&o.units, c, "units", query.ParseUnits),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
-		newPlotOptions(&o.plot, c),
+		newPlotOptions(&o.plot, c, allAxes),
 	)
 	q.Each = o.plot.file != ""
 	if o.plot.axes == axesFourWay {

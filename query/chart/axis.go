@@ -112,3 +112,17 @@ func linearAxis(label string, highest float64) axis {
 	}
 	return a
 }
+
+// spanAxis goes from one value to another, whatever they are, with round ticks.
+func spanAxis(label string, from, to float64) axis {
+	a := axis{from: from, to: to, label: label}
+	if !(to > from) {
+		return a
+	}
+	step := stepAbove((to - from) / 8)
+	for i := math.Ceil(from/step - 1e-9); i*step <= to+1e-9*step; i++ {
+		x := i*step + 0 // -0 is 0
+		a.ticks = append(a.ticks, tick{x, strconv.FormatFloat(x, 'g', 4, 64), true})
+	}
+	return a
+}

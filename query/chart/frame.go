@@ -78,7 +78,9 @@ func (f *frame) axes(withX bool) {
 		}
 	}
 	middle := f.Min.Add(f.Max).Scale(0.5)
-	f.FillText(upwards(names), vg.Point{X: f.Min.X - leftRoom + 8, Y: middle.Y}, f.y.label)
+	if f.y.label != "" {
+		f.FillText(upwards(names), vg.Point{X: f.Min.X - leftRoom + 8, Y: middle.Y}, f.y.label)
+	}
 	centred := names
 	centred.XAlign = draw.XCenter
 	isNamed = f.x.named(f.Size().X, 3*labelSize)

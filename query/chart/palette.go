@@ -21,6 +21,7 @@ var (
 	warm    = color.NRGBA{0xc2, 0x57, 0x0c, 0xff} // mean
 	plum    = color.NRGBA{0x96, 0x3c, 0xd8, 0xff} // envelope
 	mark    = color.NRGBA{0x9b, 0x1c, 0x31, 0xff} // structure
+	tone    = color.NRGBA{0x0b, 0x6b, 0x4f, 0xff} // one record
 	designs = color.NRGBA{0x00, 0x00, 0x00, 0xff} // design spectrum
 )
 
@@ -34,6 +35,15 @@ const (
 	Mean
 	Envelope
 	Design
+	// Of one record: its directions, and its dampings, of which one is that of most questions.
+	FirstHorizontal
+	SecondHorizontal
+	Vertical
+	AllDirections
+	Undamped
+	LightlyDamped
+	UsuallyDamped
+	HeavilyDamped
 )
 
 // styles are the lines of the kinds.
@@ -43,6 +53,15 @@ var styles = map[Kind]draw.LineStyle{
 	Mean:       {Color: warm, Width: 1.4, Dashes: []vg.Length{7, 2.5}},
 	Envelope:   {Color: plum, Width: 1, Dashes: []vg.Length{1.2, 2}},
 	Design:     {Color: designs, Width: 1.6, Dashes: []vg.Length{9, 2.5, 2, 2.5}},
+
+	FirstHorizontal:  {Color: tone, Width: 1},
+	SecondHorizontal: {Color: tone, Width: 1, Dashes: []vg.Length{5, 1.8}},
+	Vertical:         {Color: tone, Width: 1, Dashes: []vg.Length{1.2, 1.8}},
+	AllDirections:    {Color: tone, Width: 2},
+	Undamped:         {Color: tone, Width: 0.8, Dashes: []vg.Length{1.2, 1.8}},
+	LightlyDamped:    {Color: tone, Width: 0.8, Dashes: []vg.Length{5, 1.8}},
+	UsuallyDamped:    {Color: tone, Width: 1.8},
+	HeavilyDamped:    {Color: tone, Width: 0.8},
 }
 
 // hair is the width of single spectra.

@@ -57,7 +57,7 @@ func seenBy(m [3][3]float64, c color.NRGBA) [3]float64 {
 // times what is just noticed side by side; and each differs from the single spectra by its
 // lightness, for print in grey.
 func TestColoursAreApart(t *testing.T) {
-	curves := map[string]color.NRGBA{"percentiles": deep, "mean": warm, "envelope": plum, "structure": mark, "design": designs}
+	curves := map[string]color.NRGBA{"percentiles": deep, "mean": warm, "envelope": plum, "structure": mark, "design": designs, "record": tone}
 	for eye, m := range blindness {
 		for a, ca := range curves {
 			for b, cb := range curves {
@@ -80,7 +80,7 @@ func TestColoursAreApart(t *testing.T) {
 
 // Words have a contrast of 4.5 to the paper at least (WCAG 2.1, success criterion 1.4.3).
 func TestWordsCanBeRead(t *testing.T) {
-	for name, c := range map[string]color.NRGBA{"ink": ink, "quiet": quiet, "deep": deep, "warm": warm, "plum": plum, "mark": mark} {
+	for name, c := range map[string]color.NRGBA{"ink": ink, "quiet": quiet, "deep": deep, "warm": warm, "plum": plum, "mark": mark, "tone": tone} {
 		rgb := linear(c)
 		luminance := 0.2126*rgb[0] + 0.7152*rgb[1] + 0.0722*rgb[2]
 		if contrast := 1.05 / (luminance + 0.05); contrast < 4.5 {

@@ -3,6 +3,7 @@ package chart
 import (
 	"image/color"
 	"math"
+	"strings"
 
 	xfont "golang.org/x/image/font"
 	"gonum.org/v1/plot/font"
@@ -54,4 +55,17 @@ func shorten(s draw.TextStyle, words string, width vg.Length) string {
 		runes = runes[:len(runes)-1]
 	}
 	return string(runes) + "…"
+}
+
+// wrap breaks a text between words into lines of a width.
+func wrap(s draw.TextStyle, words string, width vg.Length) (lines []string) {
+	line := ""
+	for word := range strings.FieldsSeq(words) {
+		longer := strings.TrimSpace(line + " " + word)
+		if line != "" && s.Width(longer) > width {
+			lines, longer = append(lines, line), word
+		}
+		line = shorten(s, longer, width)
+	}
+	return append(lines, line)
 }

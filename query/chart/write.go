@@ -41,6 +41,9 @@ var Half = Size{17 * vg.Centimeter, 12 * vg.Centimeter}
 // Square is as wide, and as high.
 var Square = Size{17 * vg.Centimeter, 17 * vg.Centimeter}
 
+// Page is an A4 page with margins of 2 cm.
+var Page = Size{17 * vg.Centimeter, 25.7 * vg.Centimeter}
+
 // dotsPerInch is the resolution of PNG: fine in print at half a page.
 const dotsPerInch = 200
 
