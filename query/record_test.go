@@ -141,6 +141,24 @@ func TestRecordChart(t *testing.T) {
 	}
 }
 
+// Four-way spectra are those of all dampings, read at 5 %.
+func TestRecordFourWay(t *testing.T) {
+	store := ingested(t, "knet")
+	rows, err := RecordsQuestion{}.Ask(t.Context(), store)
+	if err != nil {
+		t.Fatal(err)
+	}
+	a := askRecord(t, store, RecordQuestion{Code: rows.Rows[0].Record, Component: ComponentH1, Figure: true})
+	four := a.FourWay(UnitsSI, []chart.Mark{{Name: "T = 0.2 s", FromS: 0.2, ToS: 0.2}})
+	s := a.Figure.Spectra[1]
+	if want := s.SD[1] * 2 * math.Pi / 0.2; len(four.Readings) != 1 || !near(four.Readings[0].PSV, want) || four.Readings[0].Name != "T = 0.2 s, 5% damped" {
+		t.Errorf("read %+v, want %v m/s", four.Readings, want)
+	}
+	if len(four.Curves) != 2 || four.Curves[0].Kind != chart.LightlyDamped || four.Curves[1].Kind != chart.UsuallyDamped {
+		t.Errorf("%d curves", len(four.Curves))
+	}
+}
+
 // Only what no quantity moves in is cut off, and never of what was delivered.
 func TestPagesShowTheMotion(t *testing.T) {
 	quiet := make([]float64, 1000)

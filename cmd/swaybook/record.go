@@ -23,6 +23,7 @@ func queryRecordCommand() *cli.Command {
 			asOfFlag(),
 			formatFlag("table, csv or json"),
 			&cli.StringFlag{Name: "plot", Usage: "draw a page of traces and spectra in a `FILE` too, .svg or .png; one that is there is replaced"},
+			axesFlag("of the figure: log (of the page's spectra), or four-way (of --component, damping by damping, instead of the page)"),
 			markFlag(),
 			&cli.StringFlag{Name: "units", Value: "si", Usage: "units of the figure: si or us"},
 		},
@@ -55,9 +56,12 @@ func newRecordOptions(c *cli.Context) (o recordOptions, err error) {
 		parseInto(&o.question.Component, c, "component", query.ParseRecordComponent),
 		parseInto(&o.units, c, "units", query.ParseUnits),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
-		newPlotOptions(&o.plot, c, []string{axesLog}))
+		newPlotOptions(&o.plot, c, []string{axesLog, axesFourWay}))
+	if err == nil && o.plot.axes == axesFourWay && o.question.Component == "" {
+		err = ofFlag("axes", usagef("--axes four-way is of one --component"))
+	}
 	if err == nil && o.plot.axes == axesLog && o.question.Component.IsRotated() {
-		err = ofFlag("plot", usagef("%s is of all directions and has no traces", o.question.Component))
+		err = ofFlag("plot", usagef("%s is of all directions and has no traces: --axes four-way draws its spectra", o.question.Component))
 	}
 	o.question.Figure = o.plot.file != ""
 	return o, err
@@ -72,7 +76,7 @@ func runRecord(ctx context.Context, store *db.Store, o recordOptions, w, stderr 
 		return err
 	}
 	if o.plot.file != "" {
-		if err := o.plot.write(figure{answer.Chart(o.units, o.plot.marks), chart.Page}); err != nil {
+		if err := o.plot.write(o.figure(answer)); err != nil {
 			return err
 		}
 	}
@@ -80,4 +84,11 @@ func runRecord(ctx context.Context, store *db.Store, o recordOptions, w, stderr 
 		fmt.Fprint(stderr, answer.Remarks())
 	}
 	return answer.Write(w, o.format)
+}
+
+func (o *recordOptions) figure(a *query.RecordAnswer) figure {
+	if o.plot.axes == axesFourWay {
+		return figure{a.FourWay(o.units, o.plot.marks), chart.Square}
+	}
+	return figure{a.Chart(o.units, o.plot.marks), chart.Page}
 }

@@ -55,7 +55,7 @@ type Section struct {
 const (
 	buildUpRoom vg.Length = 62
 	spectraRoom vg.Length = 176
-	pageGap    vg.Length = 7
+	pageGap     vg.Length = 7
 	// sectionsShare is the part of the width that sections take beside spectra.
 	sectionsShare = 0.38
 )
