@@ -47,10 +47,7 @@ func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
 	order := upTo(len(a.Percentiles))
 	slices.SortFunc(order, func(i, j int) int { return cmp.Compare(a.Percentiles[i], a.Percentiles[j]) })
 	for _, i := range order {
-		name, kind := percentKey(a.Percentiles[i])+" %", chart.Percentile
-		if a.Percentiles[i] == 50 {
-			name, kind = "median", chart.Median
-		}
+		name, kind := percentileName(a.Percentiles[i])
 		bands = append(bands, add(name, kind, func(r *Reduction) float64 { return r.Percentiles[i] }))
 	}
 	if last := len(bands) - 1; last > 0 {
@@ -67,6 +64,14 @@ func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
 		values[i] = a.Measure.of(designSD(a.Extras.Design, t, a.Damping), omega(t)) / per
 	}
 	c.Curves = append(c.Curves, chart.Curve{Name: "design", Kind: chart.Design, Values: values})
+}
+
+// percentileName is the name of a percentile in figures.
+func percentileName(percent float64) (string, chart.Kind) {
+	if percent == 50 {
+		return "median", chart.Median
+	}
+	return percentKey(percent) + " %", chart.Percentile
 }
 
 // FourWay is the answer as a four-way chart, with what is read at the marks on the median or,

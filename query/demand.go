@@ -20,6 +20,8 @@ type DemandQuestion struct {
 	By          Grouping  // the zero Grouping for none
 	Percentiles []float64 // 0 to 100; DefaultPercentiles where nil
 	Method      Method    // anything but the default is computed from samples
+	Capacities  Limits    // none by default
+	Each        bool      // the answer has the motions' own values too
 }
 
 // Quantity is one quantity of a demand.
@@ -46,6 +48,11 @@ type DemandAnswer struct {
 	By          Grouping
 	Extras      Extras
 	Groups      []DemandGroup // nil where none were asked for
+	// Capacities, and the demand over the band where there is one, or else at the period,
+	// beside them.
+	Capacities  Limits
+	Limits      []LimitRatio
+	Exceedances []Exceedance // of the same demand, by quantity; nil where not asked for
 }
 
 // DemandGroup is the statistics of one part of the selection.
@@ -118,7 +125,7 @@ func (q DemandQuestion) withDefaults() (DemandQuestion, error) {
 	if err := cmp.Or(checkBandWidth(q.BandWidth), q.By.validate()); err != nil {
 		return q, err
 	}
-	return q, q.Structure.validate()
+	return q, cmp.Or(q.Structure.validate(), q.Capacities.validate(&q.Structure))
 }
 
 func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*DemandAnswer, error) {
@@ -136,28 +143,37 @@ func (q DemandQuestion) answer(ctx context.Context, snapshot *db.Snapshot) (*Dem
 	}
 	picked.report.noteMethod(q.Method)
 	picked.report.Notes = append(picked.report.Notes, append(q.Extras.notes(&picked.report), q.Extras.dampingNote(q.Structure.Damping)...)...)
-	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By, Extras: q.Extras}
+	answer := &DemandAnswer{Selection: picked.report, Structure: q.Structure, Percentiles: q.Percentiles, By: q.By, Extras: q.Extras, Capacities: q.Capacities}
 	whole := picked.sample(q.Extras)
-	answer.Quantities, answer.Band = q.reduceBoth(whole, loaded, at)
+	answer.Quantities, answer.Band = q.reduceBoth(whole, loaded, at, func(r *reducer, name string, x *Reduction) {
+		for _, l := range q.Capacities.of(name, q.Structure.HeightM) {
+			answer.Limits = append(answer.Limits, r.compare(l, x))
+		}
+		if q.Each {
+			answer.Exceedances = append(answer.Exceedances, r.exceedance(name))
+		}
+	})
 	for _, g := range q.By.part(picked.motions) {
-		quantities, overBand := q.reduceBoth(whole.of(&g), loaded, at)
+		quantities, overBand := q.reduceBoth(whole.of(&g), loaded, at, func(*reducer, string, *Reduction) {})
 		answer.Groups = append(answer.Groups, DemandGroup{g, quantities, overBand})
 	}
 	return answer, nil
 }
 
 // reduceBoth reduces a sample at the structure's period, that of position at, and over the
-// band.
-func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int) ([]Quantity, *DemandBand) {
+// band, and calls compare with what is set beside capacities right after it was reduced.
+func (q DemandQuestion) reduceBoth(s sample, o *ordinates, at int, compare func(r *reducer, name string, x *Reduction)) ([]Quantity, *DemandBand) {
 	r := newReducer(s, q.Percentiles, q.Extras)
+	compared := func(name string, x *Reduction) { compare(r, name, x) }
 	var quantities []Quantity
-	q.Structure.each(o, []int{at}, s.at, q.Design, r.reducing(&quantities, nil))
 	if q.BandWidth == 0 {
+		q.Structure.each(o, []int{at}, s.at, q.Design, r.reducing(&quantities, compared))
 		return quantities, nil
 	}
+	q.Structure.each(o, []int{at}, s.at, q.Design, r.reducing(&quantities, nil))
 	last := len(o.oscillators) - 1
 	band := &DemandBand{FromS: o.oscillators[0].PeriodS, ToS: o.oscillators[last].PeriodS}
-	q.Structure.each(o, upTo(last+1), s.at, q.Design, r.reducing(&band.Quantities, nil))
+	q.Structure.each(o, upTo(last+1), s.at, q.Design, r.reducing(&band.Quantities, compared))
 	return quantities, band
 }
 

@@ -231,15 +231,12 @@ func parseAngle(what string, most float64) func(string) (float64, error) {
 
 // check looks for what does not go together.
 func (s *PortfolioStructure) check(found map[string]entry) error {
-	switch limits := s.Limits; {
+	entry, why := s.Limits.check(&s.Structure)
+	switch {
 	case (s.LatitudeDeg == nil) != (s.LongitudeDeg == nil):
 		return &fileError{max(found["latitude"].line, found["longitude"].line), "latitude", errors.New("latitude and longitude belong together")}
-	case limits.DriftRatio != nil && !(*limits.DriftRatio > 0 && *limits.DriftRatio < 1):
-		return &fileError{found["max_drift_ratio"].line, "max_drift_ratio", fmt.Errorf("%v is not between 0 and 1", *limits.DriftRatio)}
-	case limits.DriftRatio != nil && s.HeightM == nil:
-		return &fileError{found["max_drift_ratio"].line, "max_drift_ratio", errors.New("needs the height")}
-	case limits.BaseShearN != nil && s.MassKG == nil:
-		return &fileError{found["max_base_shear"].line, "max_base_shear", errors.New("needs a mass or a weight")}
+	case entry != "":
+		return &fileError{found[entry].line, entry, errors.New(why)}
 	}
 	return nil
 }

@@ -70,6 +70,7 @@ type LimitRatio struct {
 	Percentiles []float64 // of the demand, over the limit
 	Max         float64
 	Above       float64 // share of the motions' weight that exceeds the limit
+	CountAbove  int     // of motions that do
 	Count       int     // of motions
 	Governing   string  // the record that gives Max
 }
@@ -367,25 +368,13 @@ type limit struct {
 }
 
 // limitsOf are the capacities that limit a quantity.
-func (s *PortfolioStructure) limitsOf(quantity string) (out []limit) {
-	add := func(name string, given *float64, per float64) {
-		if given != nil {
-			out = append(out, limit{name, *given, *given * per})
-		}
-	}
-	switch quantity {
-	case "sd_m":
-		add("displacement", s.Limits.DisplacementM, 1)
-		add("drift", s.Limits.DriftRatio, orNaN(s.HeightM))
-	case "base_shear_n":
-		add("base_shear", s.Limits.BaseShearN, 1)
-	}
-	return out
+func (s *PortfolioStructure) limitsOf(quantity string) []limit {
+	return s.Limits.of(quantity, s.HeightM)
 }
 
 // compare sets a quantity that the reducer has just reduced beside a capacity.
 func (r *reducer) compare(l limit, x *Reduction) LimitRatio {
-	out := LimitRatio{Name: l.name, Limit: l.given, Max: x.Max / l.inUnit, Above: r.above(l.inUnit), Count: x.Count, Governing: x.Governing}
+	out := LimitRatio{Name: l.name, Limit: l.given, Max: x.Max / l.inUnit, Above: r.above(l.inUnit), CountAbove: len(r.reduced) - atMost(r.reduced, l.inUnit), Count: x.Count, Governing: x.Governing}
 	for _, p := range x.Percentiles {
 		out.Percentiles = append(out.Percentiles, p/l.inUnit)
 	}

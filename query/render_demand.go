@@ -40,6 +40,11 @@ func (a *DemandAnswer) table(units Units) []byte {
 		t = a.rows(true, units)
 		text = t.appendTo(text)
 	}
+	if len(a.Limits) > 0 {
+		text = fmt.Appendf(text, "\n%s\n\n", a.capacityTitle())
+		t = a.capacityTable(units)
+		text = t.appendTo(text)
+	}
 	return append(append(text, '\n'), a.Remarks()...)
 }
 
@@ -173,6 +178,9 @@ func (a *DemandAnswer) object() object {
 			groups[i] = append(g.object(), a.demandFields(g.Quantities, g.Band)...)
 		}
 		o = append(o, field{"by", a.By.Attribute}, field{"groups", groups})
+	}
+	if !a.Capacities.isNone() {
+		o = append(o, field{"capacities", limitsObject(a.Limits, a.Percentiles)})
 	}
 	return append(o, field{"caution", Caution})
 }

@@ -324,7 +324,7 @@ func (a *PortfolioAnswer) rowObject(row *PortfolioRow, list []statistic) object 
 	s := row.Structure
 	o := object{
 		{"id", s.ID}, {"name", s.Name}, {"period_s", s.PeriodS}, {"damping", s.Damping}, {"mass_kg", orNaN(s.MassKG)}, {"height_m", orNaN(s.HeightM)},
-		{"modes", len(s.Modes)}, {"quantities", a.Selection.quantitiesObject(list, row.Quantities)}, {"band", nil}, {"limits", a.limitsObject(row)},
+		{"modes", len(s.Modes)}, {"quantities", a.Selection.quantitiesObject(list, row.Quantities)}, {"band", nil}, {"limits", limitsObject(row.Limits, a.Percentiles)},
 		{"ratio", nil}, {"ratio_percentile", nil}, {"governing_limit", nil}, {"limit_governing", nil},
 	}
 	if row.Band != nil {
@@ -336,14 +336,15 @@ func (a *PortfolioAnswer) rowObject(row *PortfolioRow, list []statistic) object 
 	return o
 }
 
-func (a *PortfolioAnswer) limitsObject(row *PortfolioRow) object {
+// limitsObject has capacities by name, with the demand beside them.
+func limitsObject(limits []LimitRatio, percents []float64) object {
 	o := object{}
-	for _, l := range row.Limits {
+	for _, l := range limits {
 		ratios := object{}
-		for i, p := range a.Percentiles {
+		for i, p := range percents {
 			ratios = append(ratios, field{percentKey(p), l.Percentiles[i]})
 		}
-		o = append(o, field{l.Name, object{{"limit", l.Limit}, {"ratios", ratios}, {"max_ratio", l.Max}, {"share_above", l.Above}, {"count", l.Count}, {"governing", l.Governing}}})
+		o = append(o, field{l.Name, object{{"limit", l.Limit}, {"ratios", ratios}, {"max_ratio", l.Max}, {"share_above", l.Above}, {"count_above", l.CountAbove}, {"count", l.Count}, {"governing", l.Governing}}})
 	}
 	return o
 }

@@ -59,6 +59,10 @@ func (a *DemandAnswer) Sheet(units Units) *Sheet {
 		t = a.rows(true, units)
 		tables = append(tables, t.export(a.Band.title()))
 	}
+	if len(a.Limits) > 0 {
+		t = a.capacityTable(units)
+		tables = append(tables, t.export(a.capacityTitle()))
+	}
 	return sheetOf(a.title(units), &a.Selection, a.Selection.Remarks(), tables...)
 }
 

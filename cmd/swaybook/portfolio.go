@@ -13,8 +13,8 @@ import (
 
 // Flags that have no place beside others.
 var (
-	described    = []string{"period", "stiffness", "weight", "mass", "height", "damping", "band"} // by the file
-	oneStructure = []string{"by", "resamples", "seed"}
+	described    = []string{"period", "stiffness", "weight", "mass", "height", "damping", "band", "capacity"} // by the file
+	oneStructure = []string{"by", "resamples", "seed", "plot", "axes"}
 	ofStatistics = []string{"balance", "percentiles", "show", "confidence", "design"}
 )
 

@@ -11,6 +11,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/query"
+	"swaybook/query/chart"
 )
 
 func queryCommand() *cli.Command {
@@ -234,8 +235,11 @@ func queryDemandCommand() *cli.Command {
 			&cli.StringFlag{Name: "structures", Usage: "instead of one structure those of a CSV or TOML `FILE`, a row each"},
 			&cli.IntFlag{Name: "nearest", DefaultText: "none", Usage: "with --structures and --event: estimates from the `N` nearest stations, the worst structure first"},
 			&cli.StringFlag{Name: "ordinates", Value: "exact", Usage: "with --structures: exact, or grid, interpolated between stored ones"},
+			&cli.StringFlag{Name: "capacity", Usage: "what the structure can bear, to count the motions that exceed it: a `LIST` of a displacement, a base shear and a drift ratio by their units, such as 0.05m,800kN,1%"},
 			asOfFlag(),
 			formatFlag("table, csv or json"),
+			plotFlag(),
+			axesFlag("of the figure: log or linear"),
 		),
 		Action: func(c *cli.Context) error {
 			if c.IsSet("structures") {
@@ -256,6 +260,7 @@ type demandOptions struct {
 	question query.DemandQuestion
 	format   query.Format
 	units    query.Units
+	plot     plotOptions
 }
 
 func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
@@ -266,7 +271,7 @@ func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
 		Period: c.String("period"), Stiffness: c.String("stiffness"), Mass: c.String("mass"), Weight: c.String("weight"),
 		Damping: c.String("damping"), Height: c.String("height"),
 	})
-	return o, errors.Join(errSelection, err, noArguments(c),
+	err = errors.Join(errSelection, err, noArguments(c),
 		exclude(c, []string{"ordinates", "nearest"}, "--%s goes with --structures"),
 		parseInto(&q.Percentiles, c, "percentiles", query.ParsePercentiles),
 		parseInto(&q.By, c, "by", query.ParseGrouping),
@@ -274,15 +279,36 @@ func newDemandOptions(c *cli.Context) (o demandOptions, err error) {
 		setBootstrap(&q.Bootstrap, c),
 		parseInto(&q.Method, c, "method", query.ParseMethod),
 		parseInto(&q.BandWidth, c, "band", query.ParseBandWidth),
+		parseInto(&q.Capacities, c, "capacity", query.ParseCapacities),
 		parseInto(&o.units, c, "units", query.ParseUnits),
 		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
+		newPlotOptions(&o.plot, c, []string{axesLog, axesLinear}),
 	)
+	q.Each = o.plot.file != ""
+	return o, err
+}
+
+// figure is a figure of one panel, or of two in more height.
+func (o *demandOptions) figure(a *query.DemandAnswer, units query.Units) figure {
+	drawn := figure{a.Chart(units, o.plot.axes == axesLinear), chart.Half}
+	if a.Structure.MassKG != nil {
+		drawn.size = chart.Square
+	}
+	return drawn
 }
 
 func runDemand(ctx context.Context, store *db.Store, o demandOptions, w, stderr io.Writer) error {
+	if err := o.plot.check(); err != nil {
+		return err
+	}
 	answer, err := o.question.Ask(ctx, store)
 	if err != nil {
 		return err
+	}
+	if o.plot.file != "" {
+		if err := o.plot.write(o.figure(answer, o.units)); err != nil {
+			return err
+		}
 	}
 	return writeAnswer(answer, o.format, o.units, w, stderr)
 }

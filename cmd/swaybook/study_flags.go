@@ -22,7 +22,7 @@ var choiceKeys = []string{"include-duplicates", "include-unknown-directions", "i
 // fileKeys are the flags whose values are files, and listKeys those that take a list.
 var (
 	fileKeys = []string{"catalogue", "metadata", "layout", "recipe", "design", "structures"}
-	listKeys = []string{"near", "siting", "periods", "dampings", "percentiles", "show", "mark"}
+	listKeys = []string{"near", "siting", "periods", "dampings", "percentiles", "show", "mark", "capacity"}
 )
 
 // noKeys are the flags of questions that a study may not set: it has its own way to say

@@ -160,7 +160,7 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 		q.AsOf, q.AnySolver = at.run, at.anySolver
 		return q.Ask(ctx, store)
 	}
-	return askIn(o.units, nil, section, ask), validated(err, o.question.Validate, o.question.Selection)
+	return askIn(o.units, o.figure, section, ask), validated(err, o.question.Validate, o.question.Selection)
 }
 
 func newPortfolioAsker(c *cli.Context) (asker, error) {

@@ -83,7 +83,11 @@ func (f *frame) axes(withX bool) {
 	}
 	centred := names
 	centred.XAlign = draw.XCenter
-	isNamed = f.x.named(f.Size().X, 3*labelSize)
+	room := 3 * labelSize
+	for _, t := range f.x.ticks {
+		room = max(room, names.Width(t.name)+labelSize/2)
+	}
+	isNamed = f.x.named(f.Size().X, room)
 	for i, t := range f.x.ticks {
 		at := f.point(t.at, f.y.from)
 		f.StrokeLine2(line, at.X, at.Y-3, at.X, at.Y)

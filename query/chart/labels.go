@@ -18,9 +18,9 @@ type label struct {
 // labelStep is the least distance of two labels.
 const labelStep = labelSize + 2
 
-// drawLabels writes the labels beside the frame, in the order of their curves' ends, as near
-// to these as they find room.
-func drawLabels(f *frame, labels []label) {
+// drawLabels writes the labels in a room beside the frame, in the order of their curves' ends,
+// as near to these as they find room.
+func drawLabels(f *frame, room vg.Length, labels []label) {
 	slices.SortStableFunc(labels, func(a, b label) int { return cmp.Compare(a.from.Y, b.from.Y) })
 	wanted := make([]vg.Length, len(labels))
 	for i, l := range labels {
@@ -32,7 +32,7 @@ func drawLabels(f *frame, labels []label) {
 		f.StrokeLine2(draw.LineStyle{Color: rule, Width: 0.5}, l.from.X, l.from.Y, f.Max.X+4, y)
 		f.StrokeLine2(l.style, f.Max.X+5, y, at.X-3, y)
 		style := writing(labelSize, l.style.Color)
-		f.FillText(style, at, shorten(style, l.words, rightRoom-24))
+		f.FillText(style, at, shorten(style, l.words, room-24))
 	}
 }
 

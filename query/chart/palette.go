@@ -35,6 +35,7 @@ const (
 	Mean
 	Envelope
 	Design
+	Capacity
 	// Of one record: its directions, and its dampings, of which one is that of most questions.
 	FirstHorizontal
 	SecondHorizontal
@@ -53,6 +54,7 @@ var styles = map[Kind]draw.LineStyle{
 	Mean:       {Color: warm, Width: 1.4, Dashes: []vg.Length{7, 2.5}},
 	Envelope:   {Color: plum, Width: 1, Dashes: []vg.Length{1.2, 2}},
 	Design:     {Color: designs, Width: 1.6, Dashes: []vg.Length{9, 2.5, 2, 2.5}},
+	Capacity:   {Color: mark, Width: 1.4},
 
 	FirstHorizontal:  {Color: tone, Width: 1},
 	SecondHorizontal: {Color: tone, Width: 1, Dashes: []vg.Length{5, 1.8}},

@@ -66,10 +66,7 @@ func (s *Record) Draw(c draw.Canvas) error {
 		return ErrNothing
 	}
 	x := spanAxis("time (s) "+s.Clock, s.FromS, s.ToS)
-	base := Spectra{Title: s.Title, Foot: s.Foot}
-	for _, note := range s.Notes {
-		base.Notes = append(base.Notes, wrap(writing(labelSize, quiet), note, c.Size().X-leftRoom-8)...)
-	}
+	base := Spectra{Title: s.Title, Notes: wrapAll(s.Notes, c), Foot: s.Foot}
 	base.heading(c)
 	base.foot(c)
 	below := footRoom + bottomRoom + spectraRoom

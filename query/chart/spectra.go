@@ -182,7 +182,7 @@ func (s *Spectra) drawCurves(f, beside *frame) {
 			names = append(names, label{words: curve.Name, style: styles[curve.Kind], from: f.point(s.PeriodsS[at], curve.Values[at])})
 		}
 	}
-	drawLabels(beside, names)
+	drawLabels(beside, rightRoom, names)
 }
 
 // end is the position of a curve's last value within the frame, -1 for none.

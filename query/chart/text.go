@@ -57,6 +57,14 @@ func shorten(s draw.TextStyle, words string, width vg.Length) string {
 	return string(runes) + "…"
 }
 
+// wrapAll breaks notes into lines that have room below a chart's title.
+func wrapAll(notes []string, c draw.Canvas) (lines []string) {
+	for _, note := range notes {
+		lines = append(lines, wrap(writing(labelSize, quiet), note, c.Size().X-leftRoom-8)...)
+	}
+	return lines
+}
+
 // wrap breaks a text between words into lines of a width.
 func wrap(s draw.TextStyle, words string, width vg.Length) (lines []string) {
 	line := ""

@@ -1,0 +1,131 @@
+package chart
+
+import (
+	"math"
+	"slices"
+	"sort"
+
+	"gonum.org/v1/plot/vg"
+	"gonum.org/v1/plot/vg/draw"
+)
+
+// Exceedance is a chart of the shares of motions that are above values of some quantities,
+// with levels marked on them.
+type Exceedance struct {
+	Title    string
+	Notes    []string // lines below the title
+	Foot     string   // below the chart
+	Share    string   // what the shares are of
+	IsLinear bool     // the axis of values; else it is logarithmic
+	Panels   []ExceedancePanel
+}
+
+// ExceedancePanel is the curve of one quantity.
+type ExceedancePanel struct {
+	Quantity string    // with its unit
+	Values   []float64 // of the motions, ascending
+	Above    []float64 // share of motions above each
+	Levels   []Level
+}
+
+// Level is a value and what it is; a design value or a capacity is drawn over the whole
+// height, others up to the curve.
+type Level struct {
+	Name  string
+	Kind  Kind
+	Value float64
+}
+
+// at is the share of motions above a value.
+func (p *ExceedancePanel) at(value float64) float64 {
+	i := sort.Search(len(p.Values), func(i int) bool { return p.Values[i] > value })
+	if i == 0 {
+		return 1
+	}
+	return p.Above[i-1]
+}
+
+// levelRoom is that of the levels' names, panelGap between panels.
+const levelRoom, panelGap vg.Length = 164, 6
+
+// Draw draws the chart.
+func (s *Exceedance) Draw(c draw.Canvas) error {
+	var shown []ExceedancePanel
+	for _, p := range s.Panels {
+		if n := len(p.Values); n > 0 && p.Values[n-1] > 0 {
+			shown = append(shown, p)
+		}
+	}
+	if len(shown) == 0 {
+		return ErrNothing
+	}
+	base := Spectra{Title: s.Title, Notes: wrapAll(s.Notes, c), Foot: s.Foot}
+	base.heading(c)
+	base.foot(c)
+	area := draw.Crop(c, leftRoom, -levelRoom, footRoom, -base.headingRoom())
+	height := area.Size().Y / vg.Length(len(shown))
+	for i := range shown {
+		f := frame{Canvas: area, x: shown[i].axis(s.IsLinear), y: linearAxis(s.Share, 100)}
+		f.Max.Y = area.Max.Y - height*vg.Length(i)
+		f.Min.Y = f.Max.Y - height + bottomRoom + panelGap
+		shown[i].draw(&f)
+	}
+	return nil
+}
+
+// axis has all values and levels.
+func (p *ExceedancePanel) axis(isLinear bool) axis {
+	lowest, highest := math.Inf(1), 0.0
+	take := func(x float64) {
+		if x > 0 && !math.IsInf(x, 0) {
+			lowest, highest = min(lowest, x), max(highest, x)
+		}
+	}
+	for _, x := range p.Values {
+		take(x)
+	}
+	for _, l := range p.Levels {
+		take(l.Value)
+	}
+	return newAxis(p.Quantity, lowest, highest, !isLinear)
+}
+
+// curve is the line of steps.
+func (p *ExceedancePanel) curve(f *frame) []vg.Point {
+	line := []vg.Point{f.point(f.x.from, 100)}
+	before := 100.0
+	for i, x := range p.Values {
+		if x > f.x.from {
+			line = append(line, f.point(x, before), f.point(x, 100*p.Above[i]))
+		}
+		before = 100 * p.Above[i]
+	}
+	return append(line, f.point(f.x.to, 0))
+}
+
+// draw draws the curve and the levels, and names these beside where they meet it.
+func (p *ExceedancePanel) draw(f *frame) {
+	f.grid()
+	var names []label
+	for _, l := range p.Levels {
+		if f.x.has(l.Value) {
+			names = append(names, label{words: l.Name, style: styles[l.Kind], from: f.point(l.Value, 100*p.at(l.Value))})
+		}
+	}
+	drawLabels(f, levelRoom, slices.Clone(names))
+	for _, l := range p.Levels {
+		if !f.x.has(l.Value) {
+			continue
+		}
+		at := f.point(l.Value, 100*p.at(l.Value))
+		if l.Kind == Design || l.Kind == Capacity {
+			at.Y = f.Max.Y
+		}
+		f.StrokeLine2(styles[l.Kind], at.X, f.Min.Y, at.X, at.Y)
+	}
+	f.StrokeLines(draw.LineStyle{Color: deep, Width: 1.4}, f.ClipLinesXY(simplify(p.curve(f), tolerance))...)
+	for _, n := range names {
+		f.DrawGlyph(draw.GlyphStyle{Color: n.style.Color, Radius: 2.4, Shape: draw.CircleGlyph{}}, n.from)
+	}
+	f.axes(true)
+}
