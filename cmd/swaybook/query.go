@@ -189,6 +189,7 @@ func parseInto[T any](dst *T, c *cli.Context, flag string, parse func(string) (T
 // statistics is an answer that can be written in units, and compared.
 type statistics interface {
 	query.Compared
+	Governing() query.Governing
 	Write(w io.Writer, format query.Format, units query.Units) error
 	Remarks() string
 }

@@ -28,6 +28,7 @@ type pageOf struct {
 func (p pageOf) Write(w io.Writer, _ query.Format) error     { return p.Page.Write(w) }
 func (p pageOf) HasFigure() bool                             { return false }
 func (p pageOf) Draw(io.Writer, chart.Format) error          { return errNoFigure }
+func (p pageOf) Governing() query.Governing                  { return nil }
 func (p pageOf) Remarks() string                             { return "" }
 func (p pageOf) Section(string, report.Names) report.Section { return report.Section{} }
 
@@ -52,7 +53,7 @@ func (m *paginator) page(ctx context.Context) (*report.Page, error) {
 	for i := range m.plan.products {
 		p.Sections = append(p.Sections, m.product(&m.plan.products[i]))
 	}
-	for _, add := range []func(context.Context, *report.Page, *db.RunDetails) error{m.addRecords, m.addRejections, m.addDrift, m.addMethods, m.addProvenance} {
+	for _, add := range []func(context.Context, *report.Page, *db.RunDetails) error{m.addGoverning, m.addRecords, m.addRejections, m.addDrift, m.addMethods, m.addProvenance} {
 		if err := add(ctx, p, run); err != nil {
 			return nil, err
 		}
@@ -70,6 +71,49 @@ func (m *paginator) product(p *product) report.Section {
 	s := r.answer.Section(id, m.names)
 	s.Lines = append([]string{p.path}, s.Lines...)
 	return s
+}
+
+// mostSheets is how many records a page shows whole.
+const mostSheets = 8
+
+// addGoverning shows the records that govern most, each whole.
+func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunDetails) error {
+	all := query.Governing{}
+	for i := range m.plan.products {
+		if r := m.outputs.answers[m.plan.products[i].path]; r.empty == nil {
+			for code, n := range r.answer.Governing() {
+				all[code] += n
+			}
+		}
+	}
+	codes := all.Codes()
+	if len(codes) == 0 {
+		return nil
+	}
+	s := report.Section{ID: m.names.ID("governing"), Title: "Governing records", Lines: []string{
+		"The greatest at a period, of a quantity, or of a structure's demand over its capacity."}}
+	t := query.Table{Columns: []query.Column{{Name: "governing", IsWord: true}, {Name: "times"}}}
+	parts := map[string]string{}
+	for i, code := range codes {
+		t.Rows = append(t.Rows, []string{code, strconv.Itoa(all[code])})
+		if i >= mostSheets {
+			continue
+		}
+		a, err := query.RecordQuestion{AsOf: m.edition, Code: code, Figure: true}.Ask(ctx, m.outputs.store)
+		if err != nil {
+			return err
+		}
+		part := report.Record(m.names.ID("record", code), a, query.UnitsSI)
+		parts[code] = part.ID
+		s.Parts = append(s.Parts, part)
+	}
+	s.Tables = []report.Table{{Table: t, IsLong: len(t.Rows) > 40}}
+	if len(codes) > mostSheets {
+		s.Remarks = []string{fmt.Sprintf("shown whole are the first %d; swaybook query record CODE --plot FILE draws any", mostSheets)}
+	}
+	p.Sections = append(p.Sections, s)
+	p.LinkGoverning(parts)
+	return nil
 }
 
 // addRecords says what is held, what it is worth, and where it is from.

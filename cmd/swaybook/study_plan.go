@@ -357,7 +357,7 @@ func (p *planner) withFigures(described *study.Product) []study.Setting {
 		}
 		return append(settings, study.Setting{Key: "plot", Text: f.Text})
 	}
-	if described.Kind == study.Spectrum && p.hasReport { // which draws it too
+	if p.hasReport && isDrawn(described) { // by the report
 		return append(settings, study.Setting{Key: "plot", Text: study.Text{Value: "report.svg"}})
 	}
 	return slices.DeleteFunc(settings, func(s study.Setting) bool {
@@ -367,6 +367,12 @@ func (p *planner) withFigures(described *study.Product) []study.Setting {
 		}
 		return isOfFigure
 	})
+}
+
+// isDrawn reports whether the answer has a figure: spectra and the demand on one structure.
+func isDrawn(described *study.Product) bool {
+	hasMany := slices.ContainsFunc(described.Settings, func(s study.Setting) bool { return s.Key == "structures" })
+	return described.Kind == study.Spectrum || described.Kind == study.Demand && !hasMany
 }
 
 // products makes the questions of the products.

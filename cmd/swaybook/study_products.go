@@ -58,6 +58,8 @@ type answer interface {
 	Write(io.Writer, query.Format) error
 	// Section is the answer's part of a report.
 	Section(id string, names report.Names) report.Section
+	// Governing are the records that are the greatest of something.
+	Governing() query.Governing
 	// HasFigure reports whether there is something to draw.
 	HasFigure() bool
 	Draw(io.Writer, chart.Format) error
@@ -106,6 +108,8 @@ type unmeasured struct{}
 func (unmeasured) Figures() []query.Figure { return nil }
 func (unmeasured) Motions() []query.Motion { return nil }
 
+func (l list) Governing() query.Governing { return nil }
+
 func (l list) Remarks() string { return l.remarks }
 
 func (l list) HasFigure() bool { return false }
@@ -153,7 +157,8 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 	}
 	o, err := newDemandOptions(c)
 	section := func(id string, a *query.DemandAnswer, _ report.Names) report.Section {
-		return report.Of(id, a.Sheet(o.units))
+		f := o.figure(a, o.units)
+		return report.Demand(id, a, o.units, f.Chart, f.size)
 	}
 	ask := func(ctx context.Context, store *db.Store, at moment) (*query.DemandAnswer, error) {
 		q := o.question

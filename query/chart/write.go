@@ -24,6 +24,8 @@ type Format string
 const (
 	SVG Format = "svg"
 	PNG Format = "png"
+	// Inline is an element of SVG for a page, whose text is text in the page's fonts.
+	Inline Format = "inline"
 )
 
 // Chart can be drawn on a canvas.
@@ -68,11 +70,29 @@ func newCanvas(format Format, size Size) (vg.Canvas, io.WriterTo, error) {
 	case SVG:
 		svg := &outlined{Canvas: vgsvg.New(size.Width, size.Height)}
 		return svg, svg, nil
+	case Inline:
+		svg := &inlined{vgsvg.New(size.Width, size.Height)}
+		return svg, svg, nil
 	case PNG:
 		img := vgimg.NewWith(vgimg.UseWH(size.Width, size.Height), vgimg.UseDPI(dotsPerInch))
 		return img, vgimg.PngCanvas{Canvas: img}, nil
 	}
 	return nil, nil, fmt.Errorf("unknown format %q of a figure; accepted: svg, png", string(format))
+}
+
+// inlined leaves text as it is.
+type inlined struct{ *vgsvg.Canvas }
+
+// WriteTo writes the element alone.
+func (e *inlined) WriteTo(w io.Writer) (int64, error) {
+	var file bytes.Buffer
+	if _, err := e.Canvas.WriteTo(&file); err != nil {
+		return 0, err
+	}
+	if at := bytes.Index(file.Bytes(), []byte("<svg ")); at > 0 {
+		file.Next(at)
+	}
+	return file.WriteTo(w)
 }
 
 // outlined draws text as outlines, so that it looks the same wherever the font is absent. The

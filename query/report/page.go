@@ -98,15 +98,9 @@ func (p *Page) Write(w io.Writer) error {
 
 // drawn is a figure as an element of the page. Its text is escaped by package chart.
 func drawn(f Figure) (template.HTML, error) {
-	var file bytes.Buffer
-	if err := chart.Write(&file, chart.SVG, f.Size, f.Chart); err != nil {
-		return "", err
-	}
-	_, element, ok := bytes.Cut(file.Bytes(), []byte("<svg "))
-	if !ok {
-		return "", fmt.Errorf("a figure without its element")
-	}
-	return template.HTML("<svg " + string(element)), nil
+	var element bytes.Buffer
+	err := chart.Write(&element, chart.Inline, f.Size, f.Chart)
+	return template.HTML(element.String()), err
 }
 
 // Anchor makes an ID of words. Different words may have one ID; the caller sees to that.

@@ -2,7 +2,9 @@ package report
 
 import (
 	"fmt"
+	"io"
 	"slices"
+	"strings"
 
 	"swaybook/query"
 	"swaybook/query/chart"
@@ -62,6 +64,56 @@ func Spectrum(id string, a *query.SpectrumAnswer, units query.Units, marks []cha
 		figure("Four-way chart: pseudo-velocity upwards, displacement and pseudo-acceleration along the diagonals.", a.FourWay(units, marks), chart.Square)
 	}
 	return out
+}
+
+// Demand is the section of one structure: how many motions exceed what, and the tables. The
+// answer has the motions' values.
+func Demand(id string, a *query.DemandAnswer, units query.Units, c chart.Chart, size chart.Size) Section {
+	out := Of(id, a.Sheet(units))
+	if chart.Write(io.Discard, chart.Inline, size, c) == nil { // else there is nothing to draw
+		out.Figures = []Figure{{Caption: "How many motions exceed a demand.", Chart: c, Size: size}}
+	}
+	return out
+}
+
+// Record is the part of a record: its traces and spectra, and what is known of it. The answer
+// has its figure.
+func Record(id string, a *query.RecordAnswer, units query.Units) Section {
+	out := Of(id, a.Sheet())
+	out.Figures = []Figure{{Caption: "Traces of the motion that spectra were computed of, the build-up of Arias intensity, and spectra.", Chart: a.Chart(units, nil), Size: chart.Page}}
+	return out
+}
+
+// LinkGoverning has the cells of columns of governing records lead to parts, by record.
+func (p *Page) LinkGoverning(parts map[string]string) {
+	for i := range p.Sections {
+		p.Sections[i].linkGoverning(parts)
+	}
+}
+
+func (s *Section) linkGoverning(parts map[string]string) {
+	for i := range s.Tables {
+		t := &s.Tables[i]
+		for at, c := range t.Columns {
+			if c.Name != "governing" {
+				continue
+			}
+			links := map[string]string{}
+			for _, row := range t.Rows {
+				code, _, _ := strings.Cut(row[at], " ")
+				if id := parts[code]; id != "" {
+					links[row[at]] = id
+				}
+			}
+			if t.Links == nil {
+				t.Links = map[int]map[string]string{}
+			}
+			t.Links[at] = links
+		}
+	}
+	for i := range s.Parts {
+		s.Parts[i].linkGoverning(parts)
+	}
 }
 
 // comeFirst puts columns before the others.
