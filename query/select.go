@@ -150,7 +150,7 @@ func byRecord(held []db.HeldComponent) iter.Seq[[]db.HeldComponent] {
 }
 
 // runs yields the runs of items with equal keys.
-func runs[T any](items []T, key func(*T) int64) iter.Seq[[]T] {
+func runs[T any, K comparable](items []T, key func(*T) K) iter.Seq[[]T] {
 	return func(yield func([]T) bool) {
 		for from := 0; from < len(items); {
 			to := from + 1

@@ -323,6 +323,7 @@ func queryRecordsCommand() *cli.Command {
 			&cli.BoolFlag{Name: "conflicts", DisableDefaultText: true, Usage: "list what catalogue, metadata and headers state otherwise than what is taken"},
 			asOfFlag(),
 			formatFlag("table, csv or json"),
+			&cli.StringFlag{Name: "plot", Usage: "draw magnitude against distance, a point a record, in a `FILE` too, .svg or .png; one that is there is replaced"},
 		),
 		Action: func(c *cli.Context) error {
 			o, err := newRecordsOptions(c)
@@ -340,7 +341,10 @@ type recordsOptions struct {
 	question query.RecordsQuestion
 	list     func(context.Context, *db.Store, int64) (writer, error) // instead of the records, as of a run
 	format   query.Format
+	plot     plotOptions
 }
+
+func (o *recordsOptions) figure(a *query.RecordsAnswer) figure { return figure{a.Chart(), chart.Half} }
 
 func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
 	for _, flag := range []string{"rejected", "conflicts"} {
@@ -349,14 +353,18 @@ func newRecordsOptions(c *cli.Context) (o recordsOptions, err error) {
 			continue
 		case slices.ContainsFunc(selectionFlags("", ""), func(f cli.Flag) bool { return c.IsSet(f.Names()[0]) }):
 			return o, ofFlag(flag, usagef("--%s lists no components, and nothing that has attributes to select by", flag))
+		case c.IsSet("plot"):
+			return o, ofFlag("plot", usagef("--plot is of records, not of --%s", flag))
 		case o.list != nil:
 			return o, ofFlag(flag, usagef("--rejected and --conflicts are two lists: ask for one"))
 		}
 		o.list = otherLists[flag]
 	}
 	o.question.Selection, err = newSelection(c, query.ParseStoredComponent, query.ParseStoredSiting)
-	return o, errors.Join(err, noArguments(c),
-		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }))
+	err = errors.Join(err, noArguments(c),
+		parseInto(&o.format, c, "format", func(s string) (query.Format, error) { return query.ParseFormat(s) }),
+		newPlotOptions(&o.plot, c, []string{axesLog}))
+	return o, err
 }
 
 // writer is an answer that can be written.
@@ -383,6 +391,9 @@ func runRecords(ctx context.Context, store *db.Store, o recordsOptions, w, stder
 		}
 		return answer.Write(w, o.format)
 	}
+	if err := o.plot.check(); err != nil {
+		return err
+	}
 	answer, err := o.question.Ask(ctx, store)
 	// A list may be empty: that is an answer, whose reason goes to people.
 	if empty, ok := errors.AsType[*query.EmptyError](err); ok {
@@ -391,6 +402,11 @@ func runRecords(ctx context.Context, store *db.Store, o recordsOptions, w, stder
 		return err
 	} else if o.format != query.FormatTable {
 		fmt.Fprint(stderr, answer.Selection.Remarks())
+	}
+	if o.plot.file != "" {
+		if err := o.plot.write(o.figure(answer)); err != nil {
+			return err
+		}
 	}
 	return answer.Write(w, o.format)
 }

@@ -69,8 +69,8 @@ type answer interface {
 // inUnits is an answer of statistics in the units that were asked for.
 type inUnits struct {
 	statistics
-	units  query.Units
-	figure func() figure // nil for none
+	drawn
+	units query.Units
 	// section is its part of a report.
 	section func(id string, names report.Names) report.Section
 }
@@ -79,16 +79,21 @@ func (a inUnits) Section(id string, names report.Names) report.Section { return 
 
 func (a inUnits) Write(w io.Writer, f query.Format) error { return a.statistics.Write(w, f, a.units) }
 
-func (a inUnits) Draw(w io.Writer, f chart.Format) error {
-	if a.figure == nil {
+// drawn is what has a figure, or none where that is nil.
+type drawn struct{ figure func() figure }
+
+func (d drawn) Draw(w io.Writer, f chart.Format) error {
+	if d.figure == nil {
 		return errNoFigure
 	}
-	drawn := a.figure()
-	return chart.Write(w, f, drawn.size, drawn.Chart)
+	is := d.figure()
+	return chart.Write(w, f, is.size, is.Chart)
 }
 
 // HasFigure reports whether any value can be drawn. Drawing says that without a file.
-func (a inUnits) HasFigure() bool { return !errors.Is(a.Draw(io.Discard, chart.SVG), chart.ErrNothing) }
+func (d drawn) HasFigure() bool {
+	return d.figure != nil && !errors.Is(d.Draw(io.Discard, chart.SVG), chart.ErrNothing)
+}
 
 // errNoFigure does not come up, since a study's reader refuses figures where there are none.
 var errNoFigure = errors.New("the answer has no figure")
@@ -97,6 +102,7 @@ var errNoFigure = errors.New("the answer has no figure")
 type list struct {
 	writer
 	query.Compared
+	drawn
 	remarks string
 }
 
@@ -112,10 +118,6 @@ func (l list) Governing() query.Governing { return nil }
 
 func (l list) Remarks() string { return l.remarks }
 
-func (l list) HasFigure() bool { return false }
-
-func (l list) Draw(io.Writer, chart.Format) error { return errNoFigure }
-
 // newQuestion reads the flags of a command into its question, by kind.
 var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 	study.Spectrum: newSpectrumAsker,
@@ -124,15 +126,15 @@ var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){
 }
 
 // askIn asks for statistics in units. A figure shows them where there is one, and a report.
-func askIn[A statistics](units query.Units, drawn func(A, query.Units) figure, section func(string, A, report.Names) report.Section, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
+func askIn[A statistics](units query.Units, draw func(A, query.Units) figure, section func(string, A, report.Names) report.Section, ask func(ctx context.Context, store *db.Store, at moment) (A, error)) asker {
 	return func(ctx context.Context, store *db.Store, at moment) (answer, error) {
 		a, err := ask(ctx, store, at)
 		if err != nil {
 			return nil, err
 		}
 		out := inUnits{statistics: a, units: units, section: func(id string, names report.Names) report.Section { return section(id, a, names) }}
-		if drawn != nil {
-			out.figure = func() figure { return drawn(a, units) }
+		if draw != nil {
+			out.figure = func() figure { return draw(a, units) }
 		}
 		return out, nil
 	}
@@ -189,18 +191,18 @@ func newRecordsAsker(c *cli.Context) (asker, error) {
 	ask := func(ctx context.Context, store *db.Store, at moment) (answer, error) {
 		if o.list != nil {
 			a, err := o.list(ctx, store, at.run)
-			return list{a, unmeasured{}, ""}, err
+			return list{a, unmeasured{}, drawn{}, ""}, err
 		}
 		q := o.question
 		q.AsOf, q.AnySolver = at.run, at.anySolver
 		a, err := q.Ask(ctx, store)
 		if empty, ok := errors.AsType[*query.EmptyError](err); ok { // a list may be empty
-			return list{a, a, empty.Error() + "\n"}, nil
+			return list{a, a, drawn{}, empty.Error() + "\n"}, nil
 		}
 		if err != nil {
 			return nil, err
 		}
-		return list{a, a, a.Selection.Remarks()}, nil
+		return list{a, a, drawn{func() figure { return o.figure(a) }}, a.Selection.Remarks()}, nil
 	}
 	return ask, validated(err, o.question.Validate, o.question.Selection)
 }

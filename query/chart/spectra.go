@@ -52,7 +52,7 @@ const (
 )
 
 // ErrNothing says that there is nothing to draw.
-var ErrNothing = errors.New("no spectrum to draw: all values are missing or zero")
+var ErrNothing = errors.New("nothing to draw: all values are missing or zero")
 
 // Draw draws the chart.
 func (s *Spectra) Draw(c draw.Canvas) error {
