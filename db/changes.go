@@ -89,6 +89,9 @@ func (s *Store) StationCodes(ctx context.Context, runs ...int64) (map[string]str
 	out := map[string]string{}
 	for _, run := range runs {
 		err := s.ViewAsOf(ctx, run, func(v *Snapshot) error {
+			if err := v.whole(ctx, "record", "station"); err != nil {
+				return err
+			}
 			rows, err := v.tx.QueryContext(ctx, `SELECT r.code, `+stationKey+` FROM `+v.shown("record")+` r JOIN `+v.shown("station")+` t ON t.id = r.station_id`)
 			if err != nil {
 				return fmt.Errorf("read stations: %w", err)
@@ -108,6 +111,9 @@ func (s *Store) StationCodes(ctx context.Context, runs ...int64) (map[string]str
 
 // changesSince compares the snapshot's edition with an earlier one, 0 for an empty one.
 func (s *Snapshot) changesSince(ctx context.Context, before int64) (*Changes, error) {
+	if err := s.wholeSince(ctx, before); err != nil {
+		return nil, err
+	}
 	c := &Changes{}
 	var findings, computed Change
 	for _, kind := range []struct {
@@ -140,6 +146,19 @@ func (s *Snapshot) changesSince(ctx context.Context, before int64) (*Changes, er
 	c.Recomputed = computed.Changed
 	c.Components.Changed = withFindings(&c.Components, &findings)
 	return c, nil
+}
+
+// wholeSince looks whether both editions are what they were when they were made.
+func (s *Snapshot) wholeSince(ctx context.Context, before int64) error {
+	names := slices.Sorted(maps.Keys(sealedTables))
+	if err := s.whole(ctx, names...); err != nil || before == 0 {
+		return err
+	}
+	seals, err := sealsOf(ctx, s.tx, before)
+	if err != nil {
+		return err
+	}
+	return wholeOf(ctx, s.tx, before, ofEdition(before, false), seals, names...)
 }
 
 // comparison says how rows t of an edition's table are compared: by what people know them

@@ -30,7 +30,10 @@ func (t *Tx) AddSolved(ctx context.Context, u Unsolved, generationID int64, comp
 // AddFailure stores why the generation's recipe cannot be carried out on a component,
 // which is left without spectra.
 func (t *Tx) AddFailure(ctx context.Context, u Unsolved, generationID int64, reason string) error {
-	id, _, err := t.compute(ctx, componentInputs, u.RecordID, u.Role, generationID, reason)
+	id, isNew, err := t.compute(ctx, componentInputs, u.RecordID, u.Role, generationID, reason)
+	if err == nil && isNew {
+		err = t.sealComputation(ctx, id, Spectra{}, reason)
+	}
 	if err != nil {
 		return err
 	}
@@ -127,7 +130,7 @@ func (t *Tx) addSpectra(ctx context.Context, computationID int64, computed Spect
 			return fmt.Errorf("store measure %s: %w", name, err)
 		}
 	}
-	return nil
+	return t.sealComputation(ctx, computationID, computed, "")
 }
 
 // Adopt gives components and pairs of the generation that lack it what was computed of

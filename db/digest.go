@@ -25,7 +25,7 @@ const digestVersion = 1
 // nothing published.
 func Digest(ctx context.Context, path string) (digest string, err error) {
 	err = Inspect(ctx, path, func(Fault) {}, func(i *Inspection) error {
-		v, err := snapshotOf(ctx, i.tx, nothingShown, `state = '`+EditionPublished+`'`)
+		v, err := snapshotOf(ctx, i.tx, nothingShown, isPublished)
 		if err == nil {
 			digest, err = v.Digest(ctx)
 		}

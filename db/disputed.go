@@ -27,6 +27,9 @@ const (
 // code and attribute; and the earthquakes that have several codes, as such an
 // attribute. What is stated of an event under any of its codes is one list.
 func (s *Snapshot) Disputed(ctx context.Context) ([]Disputed, error) {
+	if err := s.whole(ctx, "statement", "event", "station", "record"); err != nil {
+		return nil, err
+	}
 	// By the id that is shown: of an event, of the one that stands for it.
 	rows, err := s.tx.QueryContext(ctx, `WITH shown AS (
 			SELECT t.subject, coalesce(e.primary_id, t.subject_id) AS id, t.attribute, t.stated_by, t.value, t.source
@@ -80,6 +83,9 @@ type ScaledVersions struct {
 // ScaledVersions returns the versions of one motion of which one is more than a share
 // larger than the other, by the records' codes. Polarity does not count.
 func (s *Snapshot) ScaledVersions(ctx context.Context, share float64) ([]ScaledVersions, error) {
+	if err := s.whole(ctx, "likeness", "component", "record", "source_file"); err != nil {
+		return nil, err
+	}
 	rows, err := s.tx.QueryContext(ctx, `SELECT a.role, ra.code, rb.code, fa.path, fb.path, l.scale
 		FROM `+s.shown("likeness")+` l
 		JOIN `+s.shown("component")+` a ON a.id = l.first_id JOIN `+s.shown("component")+` b ON b.id = l.second_id AND b.motion_id = a.motion_id

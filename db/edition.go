@@ -48,6 +48,10 @@ var shownTables = []shownTable{
 	{"likeness", []string{"first_id", "second_id"}},
 }
 
+// isPublished is the condition of the one edition that is. The plus keeps its index from
+// being used, which is there so that there is but one: where it is damaged it leads to another.
+const isPublished = `+state = '` + EditionPublished + `'`
+
 // Edition is what a run left for questions.
 type Edition struct {
 	ID           int64 // the run's
@@ -84,7 +88,7 @@ func (t *Tx) PutEdition(ctx context.Context, runID, generationID int64) (isNew b
 	if err := t.exec(ctx, `INSERT INTO edition (id, generation_id, state) VALUES (?, ?, ?)`, runID, generationID, EditionHeld); err != nil {
 		return false, fmt.Errorf("make edition: %w", err)
 	}
-	return true, nil
+	return true, t.sealEdition(ctx, runID)
 }
 
 // show ends the rows of the newest edition that are no longer those of the table, and
@@ -171,7 +175,7 @@ func (t *Tx) PublishRun(ctx context.Context, runID int64, solver string) (e, bef
 
 // PublishedEdition returns the edition that questions read; ok is false where there is none.
 func (t *Tx) PublishedEdition(ctx context.Context) (e Edition, ok bool, err error) {
-	return editionBy(ctx, t.tx, `state = '`+EditionPublished+`'`)
+	return editionBy(ctx, t.tx, isPublished)
 }
 
 // editionBy returns the edition that meets a condition.

@@ -3,6 +3,8 @@ package db
 import (
 	"context"
 	"fmt"
+	"maps"
+	"slices"
 	"strings"
 )
 
@@ -84,6 +86,9 @@ func (i *Inspection) linked(ctx context.Context) error {
 	}
 	for _, id := range ids {
 		shown := ofEdition(id, id == i.newest.ID)
+		if err := i.sealed(ctx, id, shown); err != nil {
+			return err
+		}
 		for _, l := range []struct{ table, query string }{
 			{"component", `SELECT 'component ' || c.id || ' is of a record or file that is not there' FROM ` + shown("component") + ` c
 				LEFT JOIN ` + shown("record") + ` r ON r.id = c.record_id LEFT JOIN ` + shown("source_file") + ` f ON f.id = c.source_id WHERE r.id IS NULL OR f.id IS NULL`},
@@ -107,6 +112,31 @@ func (i *Inspection) linked(ctx context.Context) error {
 			if err := i.lookFor(ctx, "edition_"+l.table, `WITH lost (text) AS (`+l.query+`) SELECT 'edition ' || ?1 || ': ' || text FROM lost`, id); err != nil {
 				return err
 			}
+		}
+	}
+	return nil
+}
+
+// sealed compares what an edition shows with what it did when it was made.
+func (i *Inspection) sealed(ctx context.Context, id int64, shown tables) error {
+	was, err := sealsOf(ctx, i.tx, id)
+	for _, name := range slices.Sorted(maps.Keys(sealsNow(id, shown))) {
+		var text string
+		if err == nil {
+			text, err = unlike(ctx, i.tx, id, shown, name, was)
+		}
+		if ctx.Err() != nil {
+			return ctx.Err()
+		}
+		if err != nil {
+			text, err = err.Error(), nil
+		}
+		if text != "" {
+			table := "edition_seal" // of what is sealed beside tables, which tells its own
+			if _, isTable := sealedTables[name]; isTable {
+				table = "edition_" + name
+			}
+			i.found(Fault{Table: table, Text: fmt.Sprintf("edition %d, %s: %s; questions that read it fail", id, name, text)})
 		}
 	}
 	return nil

@@ -69,7 +69,30 @@ func (i *Inspection) Seals(ctx context.Context) error {
 	for _, id := range damaged {
 		i.found(i.Of(ctx, InspectedComputation{ID: id / mostDampings}, "spectrum", fmt.Sprintf("damping %d: not what was stored; questions leave it out", id%mostDampings+1)))
 	}
-	return err
+	if err != nil {
+		return err
+	}
+	return i.computationSeals(ctx)
+}
+
+// computationSeals compares what is computed beside spectra with its checksums.
+func (i *Inspection) computationSeals(ctx context.Context) error {
+	type row struct {
+		id   int64
+		kind string
+	}
+	var damaged []row
+	for _, kind := range computationSeals {
+		err := look(ctx, i, "computation_seal", `SELECT n.id, '`+kind+`' FROM (`+sealsOfComputation+`) n LEFT JOIN computation_seal s ON s.computation_id = n.id WHERE s.`+kind+` IS NOT n.`+kind, nil,
+			func(v *row) []any { return []any{&v.id, &v.kind} }, func(v *row) { damaged = append(damaged, *v) })
+		if err != nil {
+			return err
+		}
+	}
+	for _, v := range damaged {
+		i.found(i.Of(ctx, InspectedComputation{ID: v.id}, sealedIn[v.kind], v.kind+": not what was stored; questions that read it fail"))
+	}
+	return nil
 }
 
 // KeptOffGrid is what is kept off the grid of one computation, or of both of a pair.

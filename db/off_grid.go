@@ -4,7 +4,6 @@ import (
 	"context"
 	"database/sql"
 	"encoding/binary"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"hash/crc32"
@@ -61,32 +60,39 @@ func (data OffGridSD) Decode(dst []float64) error { return openDoubles(dst, data
 // OffGrid reads what is kept of a role of some records in some blocks of the snapshot's
 // generation, and calls f with each. f must not keep the SD.
 func (s *Snapshot) OffGrid(ctx context.Context, role string, records, blocks []int64, f func(recordID, blockID int64, sd OffGridSD) error) error {
-	wanted, err := json.Marshal(records)
+	of, err := s.computations(ctx, role)
 	if err != nil {
 		return fmt.Errorf("read ordinates off the grid: %w", err)
 	}
-	among, err := json.Marshal(blocks)
-	if err != nil {
-		return fmt.Errorf("read ordinates off the grid: %w", err)
+	var computed []int64
+	recordsOf := map[int64][]int64{}
+	for _, record := range records {
+		if id, ok := of[record]; ok {
+			if recordsOf[id] == nil {
+				computed = append(computed, id)
+			}
+			recordsOf[id] = append(recordsOf[id], record)
+		}
 	}
 	// A computation's blocks stand together. They are walked through, since to look each of
 	// hundreds up costs more; the plus keeps the list from being used to do that.
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, o.block_id, o.sd_m FROM json_each(?1) r
-		CROSS JOIN `+s.shown("computed")+` k ON k.record_id = r.value AND k.role = ?2
-		CROSS JOIN off_grid o ON o.computation_id = k.computation_id AND o.block_id BETWEEN (SELECT min(value) FROM json_each(?3)) AND (SELECT max(value) FROM json_each(?3))
-			AND +o.block_id IN (SELECT value FROM json_each(?3))`, string(wanted), role, string(among))
+	rows, err := s.tx.QueryContext(ctx, `SELECT o.computation_id, o.block_id, o.sd_m FROM json_each(?1) k
+		CROSS JOIN off_grid o ON o.computation_id = k.value AND o.block_id BETWEEN (SELECT min(value) FROM json_each(?2)) AND (SELECT max(value) FROM json_each(?2))
+			AND +o.block_id IN (SELECT value FROM json_each(?2))`, idList(computed), idList(blocks))
 	if err != nil {
 		return fmt.Errorf("read ordinates off the grid: %w", err)
 	}
 	defer rows.Close()
-	var record, block int64
+	var computation, block int64
 	var sd sql.RawBytes
 	for rows.Next() {
-		if err := rows.Scan(&record, &block, &sd); err != nil {
+		if err := rows.Scan(&computation, &block, &sd); err != nil {
 			return fmt.Errorf("read ordinates off the grid: %w", err)
 		}
-		if err := f(record, block, OffGridSD(sd)); err != nil {
-			return err
+		for _, record := range recordsOf[computation] {
+			if err := f(record, block, OffGridSD(sd)); err != nil {
+				return err
+			}
 		}
 	}
 	return rows.Err()

@@ -119,8 +119,8 @@ func (s *Snapshot) KeepOffGrid(ctx context.Context, blocks []OffGridBlock, rows 
 	return s.store.keep(ctx, func(t *Tx) error {
 		kept := map[int64]int{}
 		for i := range rows {
-			of, err := idOf(ctx, s.tx, `SELECT computation_id FROM `+s.shown("computed")+` WHERE record_id = ? AND role = ?`, rows[i].RecordID, rows[i].Role)
-			if err == nil && of != 0 {
+			computed, err := s.computations(ctx, rows[i].Role)
+			if of, ok := computed[rows[i].RecordID]; err == nil && ok {
 				err = t.keepOffGrid(ctx, of, blocks, rows[i].SD, kept)
 			}
 			if err != nil {

@@ -75,6 +75,7 @@ func (t *Tx) pruneEditions(ctx context.Context, keep int, p *Pruned) error {
 		`DELETE FROM computed WHERE generation_id IN (SELECT generation_id FROM edition WHERE id IN (SELECT value FROM json_each(?1)))
 			AND generation_id NOT IN (SELECT generation_id FROM edition WHERE id NOT IN (SELECT value FROM json_each(?1)))`,
 		`UPDATE run SET edition_id = NULL WHERE edition_id IN (SELECT value FROM json_each(?))`,
+		`DELETE FROM edition_seal WHERE edition_id IN (SELECT value FROM json_each(?))`,
 		`DELETE FROM edition WHERE id IN (SELECT value FROM json_each(?))`,
 	} {
 		if err := t.exec(ctx, statement, gone); err != nil {
@@ -138,7 +139,7 @@ func (t *Tx) pruneComputations(ctx context.Context, ids string, p *Pruned) error
 		n     *int
 		table string
 	}{
-		{&uncounted, "measure"}, {&uncounted, "conditioning"}, {&uncounted, "conditioned_finding"}, {&p.OffGridRows, "off_grid"},
+		{&uncounted, "measure"}, {&uncounted, "conditioning"}, {&uncounted, "conditioned_finding"}, {&uncounted, "computation_seal"}, {&p.OffGridRows, "off_grid"},
 	} {
 		if err == nil {
 			err = t.remove(ctx, from.n, from.table+` WHERE computation_id`+these, ids)

@@ -5,7 +5,10 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+	"sync"
 	"time"
+
+	sqlite3 "modernc.org/sqlite/lib"
 )
 
 // Snapshot is what a reader sees: one edition, whatever is written meanwhile.
@@ -13,7 +16,14 @@ type Snapshot struct {
 	tx       queryer
 	store    *Store
 	shown    tables
-	reserved []OffGridBlock // by ReserveOffGrid
+	seals    map[sealKey]editionSeal // nil of the working state, which has none
+	reserved []OffGridBlock          // by ReserveOffGrid
+	// hasVersions says whether components hold one motion, nil before they are read.
+	hasVersions *bool
+
+	known    sync.Mutex
+	isWhole  map[string]bool            // tables that were looked at
+	computed map[string]map[int64]int64 // computations by role and record, of roles that were read
 
 	Edition    Edition
 	Generation Generation // the edition's
@@ -28,7 +38,7 @@ var ErrUnpublished = errors.New("nothing is published yet: the first run has not
 // View runs f on a snapshot of the published edition. The error is ErrEmpty or
 // ErrUnpublished where there is none.
 func (s *Store) View(ctx context.Context, f func(*Snapshot) error) error {
-	return s.view(ctx, nothingShown, f, `state = '`+EditionPublished+`'`)
+	return s.view(ctx, nothingShown, f, isPublished)
 }
 
 // absent says why there is no edition such as was asked for.
@@ -43,11 +53,20 @@ func (s *Store) view(ctx context.Context, missing absent, f func(*Snapshot) erro
 	}
 	defer tx.Rollback()
 	v, err := snapshotOf(ctx, tx, missing, condition, args...)
-	if err != nil {
-		return err
+	if err == nil {
+		v.store = s
+		err = v.sealed(ctx)
 	}
-	v.store = s
-	return f(v)
+	if err == nil {
+		err = f(v)
+	}
+	switch {
+	case errors.Is(err, ErrAltered):
+		return fmt.Errorf("%s: %w", s.path, err)
+	case codeOf(err) == sqlite3.SQLITE_CORRUPT:
+		return fmt.Errorf("%s: %w: %w; swaybook verify lists all", s.path, ErrAltered, err)
+	}
+	return err
 }
 
 // snapshotOf is a snapshot, without its store, of the edition that meets the condition.
@@ -63,7 +82,7 @@ func snapshotOf(ctx context.Context, tx *sql.Tx, missing absent, condition strin
 	if err != nil {
 		return nil, fmt.Errorf("read edition: %w", err)
 	}
-	v := &Snapshot{tx: tx, shown: ofEdition(e.ID, e.ID == newest), Edition: e}
+	v := &Snapshot{tx: tx, shown: ofEdition(e.ID, e.ID == newest), Edition: e, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}}
 	v.Generation, err = generation(ctx, tx, e.GenerationID)
 	return v, err
 }
@@ -81,21 +100,23 @@ func nothingShown(ctx context.Context, q queryer) error {
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, coalesce((SELECT p.code FROM `+s.shown("event")+` p WHERE p.id = e.primary_id), code), coalesce(name, ''),
+	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, primary_id, coalesce((SELECT p.code FROM `+s.shown("event")+` p WHERE p.id = e.primary_id), code), coalesce(name, ''),
 		coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM `+s.shown("event")+` e`+where, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read events: %w", err)
 	}
 	type row struct {
-		id     int64
-		origin string
+		id      int64
+		primary sql.NullInt64
+		origin  string
 		Event
 	}
-	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.id, &v.OwnCode, &v.Code, &v.Name, &v.origin, &v.LatitudeDeg, &v.LongitudeDeg, &v.DepthKM, &v.Magnitude, &v.MagnitudeType}
+	seen := s.tally("event", "", "id", "code", "primary_id", "", "name", "origin_time", "latitude_deg", "longitude_deg", "depth_km", "magnitude", "magnitude_type")
+	found, err := collectSeen(rows, seen, func(v *row) []any {
+		return []any{&v.id, &v.OwnCode, &v.primary, &v.Code, &v.Name, &v.origin, &v.LatitudeDeg, &v.LongitudeDeg, &v.DepthKM, &v.Magnitude, &v.MagnitudeType}
 	})
 	if err != nil {
-		return nil, fmt.Errorf("read events: %w", err)
+		return nil, s.unread("event", err)
 	}
 	out := make(map[int64]*Event, len(found))
 	for _, v := range found {
@@ -103,6 +124,11 @@ func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[in
 			return nil, err
 		}
 		out[v.id] = &v.Event
+	}
+	for _, v := range found {
+		if primary := out[v.primary.Int64]; primary != nil { // what was found by a damaged row is not
+			out[v.id].Code = primary.OwnCode
+		}
 	}
 	return out, nil
 }
@@ -116,11 +142,12 @@ func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[
 		id int64
 		Station
 	}
-	found, err := collect(rows, func(v *row) []any {
+	seen := s.tally("station", "", "id", "network", "code", "name", "latitude_deg", "longitude_deg", "elevation_m", "vs30_m_s", "site_class")
+	found, err := collectSeen(rows, seen, func(v *row) []any {
 		return []any{&v.id, &v.Network, &v.Code, &v.Name, &v.LatitudeDeg, &v.LongitudeDeg, &v.ElevationM, &v.Vs30MPS, &v.SiteClass}
 	})
 	if err != nil {
-		return nil, fmt.Errorf("read stations: %w", err)
+		return nil, s.unread("station", err)
 	}
 	out := make(map[int64]*Station, len(found))
 	for _, v := range found {
@@ -137,19 +164,27 @@ type Span struct{ From, To int }
 // record's id. Each text holds one value a period, unless it is damaged: none where it is
 // not that of its checksum, which is of all periods. f must not keep it.
 func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, s.crc32c, s.sd_m FROM `+s.shown("computed")+` k CROSS JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, s.crc32c, s.sd_m FROM `+s.shown("computed")+` k LEFT JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
 		WHERE k.role = ?2 ORDER BY k.record_id`, dampingPosition, role)
 	if err != nil {
 		return fmt.Errorf("read spectra: %w", err)
 	}
 	defer rows.Close()
-	var id, seal int64
+	var id, computation int64
+	var of string
+	var seal sql.NullInt64
 	var raw sql.RawBytes
+	into := []any{&id, &of, &computation, &seal, &raw}
+	seen := s.tally("computed", role, "record_id", "role", "computation_id", "", "")
 	for rows.Next() {
-		if err := rows.Scan(&id, &seal, &raw); err != nil {
-			return fmt.Errorf("read spectra: %w", err)
+		if err := rows.Scan(into...); err != nil {
+			return s.unread("computed", err)
 		}
-		text := sealedText{raw, seal}.open()
+		seen.add(into)
+		if !seal.Valid {
+			continue
+		}
+		text := sealedText{raw, seal.Int64}.open()
 		if len(text) >= periods.To*OrdinateWidth {
 			text = text[periods.From*OrdinateWidth : periods.To*OrdinateWidth]
 		}
@@ -157,49 +192,16 @@ func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int
 			return err
 		}
 	}
-	return rows.Err()
-}
-
-// RotatedPeaks returns the peaks that are stored under a role of RotD, by the
-// record's id: those of the records whose spectra of that role are stored.
-func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Peaks, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, m.name, m.value FROM `+s.shown("computed")+` k
-		CROSS JOIN measure m ON m.computation_id = k.computation_id WHERE k.role = ?`, role)
-	if err != nil {
-		return nil, fmt.Errorf("read rotated peaks: %w", err)
-	}
-	type row struct {
-		id    int64
-		name  string
-		value float64
-	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.id, &v.name, &v.value} })
-	if err != nil {
-		return nil, fmt.Errorf("read rotated peaks: %w", err)
-	}
-	out := map[int64]Peaks{}
-	for _, v := range found {
-		p, ok := out[v.id]
-		if !ok {
-			p = lostPeaks
-		}
-		switch v.name {
-		case MeasurePGA:
-			p.PGA = v.value
-		case MeasurePGV:
-			p.PGV = v.value
-		case MeasurePGD:
-			p.PGD = v.value
-		}
-		out[v.id] = p
-	}
-	return out, nil
+	return s.unread("computed", errors.Join(rows.Err(), seen.check()))
 }
 
 // Motion returns a component's motion, its samples checked against their digest. The
 // error wraps ErrDamaged where these cannot be had.
-func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Motion, error) {
-	m, err := readSeries(ctx, s.tx, s.shown, `c.record_id = ? AND c.role = ?`, recordID, role)
+func (s *Snapshot) Motion(ctx context.Context, componentID int64) (Motion, error) {
+	if err := s.wholeOnce(ctx, "component"); err != nil {
+		return Motion{}, err
+	}
+	m, err := readSeries(ctx, s.tx, s.shown, `c.id = ?`, componentID)
 	if err != nil {
 		return Motion{}, err
 	}
@@ -209,6 +211,15 @@ func (s *Snapshot) Motion(ctx context.Context, recordID int64, role string) (Mot
 // Rejections returns what could not be stored, and what is stored and could not be
 // conditioned, ordered by path and line.
 func (s *Snapshot) Rejections(ctx context.Context) ([]Rejection, error) {
+	if err := s.whole(ctx, "rejection"); err != nil {
+		return nil, err
+	}
+	if s.failures() == 0 {
+		return rejections(ctx, s.tx, s.shown, "")
+	}
+	if err := s.wholeFailures(ctx); err != nil {
+		return nil, err
+	}
 	return rejections(ctx, s.tx, s.shown, "UNION ALL "+failures(s.shown))
 }
 

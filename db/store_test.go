@@ -163,7 +163,7 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		if *c.Record.Event.Magnitude != 6.1 || *c.Record.Station.Vs30MPS != 420 || *c.Record.Distances.BestKM != 12.5 || c.PGA != 0.5 || c.PGD != 1.5 {
 			t.Errorf("component = %+v", c)
 		}
-		if m, err := v.Motion(t.Context(), c.RecordID, c.Role); err != nil || len(m.Acceleration) != 100 {
+		if m, err := v.Motion(t.Context(), c.ID); err != nil || len(m.Acceleration) != 100 {
 			t.Errorf("samples: %d, %v", len(m.Acceleration), err)
 		}
 		for _, periods := range []Span{{0, 3}, {1, 2}, {2, 3}, {0, 2}} {

@@ -14,6 +14,10 @@ var ErrNewer = errors.New("store is newer than this program")
 // ErrDamaged says that what the store holds of a component is not what was stored.
 var ErrDamaged = errors.New("damaged in the store")
 
+// ErrAltered says that an edition shows something else than when it was made, so that there is
+// no answer, whatever it is about.
+var ErrAltered = errors.New("the store is damaged")
+
 // Roles that a stored component can have.
 const (
 	RoleH1 = "h1"

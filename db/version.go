@@ -86,13 +86,6 @@ func (t *Tx) VersionsOf(ctx context.Context, recordID int64) ([]Version, error) 
 	return versions(ctx, t.tx, versionColumns(working(0))+` WHERE c.record_id = ? ORDER BY c.id`, recordID)
 }
 
-// Versions returns the components of the records that hold a motion which another one
-// holds too; MotionID is 0 of those among them that do not.
-func (s *Snapshot) Versions(ctx context.Context) ([]Version, error) {
-	return versions(ctx, s.tx, versionColumns(s.shown)+`
-		WHERE c.record_id IN (SELECT record_id FROM `+s.shown("component")+` WHERE motion_id IS NOT NULL) ORDER BY c.id`)
-}
-
 func versions(ctx context.Context, q queryer, query string, args ...any) ([]Version, error) {
 	rows, err := q.QueryContext(ctx, query, args...)
 	if err != nil {

@@ -145,7 +145,7 @@ func conditionedOf(t *testing.T, store *db.Store, c db.HeldComponent) (out condi
 		if err != nil {
 			return err
 		}
-		delivered, err := v.Motion(t.Context(), c.RecordID, c.Role)
+		delivered, err := v.Motion(t.Context(), c.ID)
 		if err != nil {
 			return err
 		}

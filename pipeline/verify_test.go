@@ -339,7 +339,7 @@ func keepOffGrid(t *testing.T, store *db.Store) {
 			return err
 		}
 		for _, of := range components[:2] {
-			m, err := v.Motion(t.Context(), of.RecordID, of.Role)
+			m, err := v.Motion(t.Context(), of.ID)
 			if err != nil {
 				return err
 			}

@@ -104,7 +104,7 @@ func readConditioned(ctx context.Context, snapshot *db.Snapshot, c *db.HeldCompo
 	if err != nil {
 		return condition.Conditioned{}, err
 	}
-	delivered, err := snapshot.Motion(ctx, c.RecordID, c.Role)
+	delivered, err := snapshot.Motion(ctx, c.ID)
 	if err != nil {
 		return condition.Conditioned{}, err
 	}
