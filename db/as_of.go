@@ -14,7 +14,15 @@ var ErrNoEdition = errors.New("no such edition")
 // run held back. The error is a *NoEditionError where that is not there.
 func (s *Store) ViewAsOf(ctx context.Context, runID int64, f func(*Snapshot) error) error {
 	missing := func(ctx context.Context, q queryer) error { return noEdition(ctx, q, runID) }
-	return s.view(ctx, missing, f, `id = (SELECT `+editionOfRun+` FROM run WHERE id = ?)`, runID)
+	return s.view(ctx, missing, f, `id = (SELECT `+editionOfRun+` FROM run WHERE id = ? AND `+isWholeRun+`)`, runID)
+}
+
+// isWholeRun says of a run that its row is what was written.
+const isWholeRun = `seal = crc32c(id, kind, program, started_at, ended_at, outcome, counts, edition_id)`
+
+// alteredRun is the error of a run whose row is not.
+func alteredRun(id int64) error {
+	return fmt.Errorf("%w: run %d is not as it was written; swaybook verify lists all", ErrAltered, id)
 }
 
 // editionOfRun is the id of the edition that a run left, if it is kept: a run that made one
@@ -67,6 +75,13 @@ func noEdition(ctx context.Context, q queryer, run int64) error {
 	known, err := idOf(ctx, q, `SELECT id FROM run WHERE id = ?`, run)
 	if err != nil {
 		return fmt.Errorf("read runs: %w", err)
+	}
+	whole, err := idOf(ctx, q, `SELECT id FROM run WHERE id = ? AND `+isWholeRun, run)
+	if err != nil {
+		return fmt.Errorf("read runs: %w", err)
+	}
+	if known != whole {
+		return alteredRun(run)
 	}
 	rows, err := q.QueryContext(ctx, `SELECT id FROM run WHERE `+editionOfRun+` IN (SELECT id FROM edition) ORDER BY id`)
 	if err != nil {

@@ -153,7 +153,7 @@ func (t *Tx) NewestEdition(ctx context.Context) (e Edition, ok bool, err error) 
 // it and what was published before; ok is false where nothing was. The error is a
 // *NoEditionError where that edition is not kept.
 func (t *Tx) PublishRun(ctx context.Context, runID int64, solver string) (e, before Edition, ok bool, err error) {
-	e, found, err := editionBy(ctx, t.tx, `id = (SELECT `+editionOfRun+` FROM run WHERE id = ?)`, runID)
+	e, found, err := editionBy(ctx, t.tx, `id = (SELECT `+editionOfRun+` FROM run WHERE id = ? AND `+isWholeRun+`)`, runID)
 	if err == nil && !found {
 		err = noEdition(ctx, t.tx, runID)
 	}

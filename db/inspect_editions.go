@@ -29,6 +29,9 @@ func (i *Inspection) Editions(ctx context.Context) (unlooked string, err error) 
 	if published != 1 && len(editions) > 0 {
 		i.found(Fault{Table: "edition", Text: fmt.Sprintf("%d editions are published", published)})
 	}
+	if err := i.lookFor(ctx, "run", `SELECT 'run ' || id || ' is not as it was written' FROM run WHERE NOT (`+isWholeRun+`)`); err != nil {
+		return "", err
+	}
 	for _, table := range shownTables {
 		if err := i.times(ctx, table); err != nil {
 			return "", err

@@ -38,23 +38,27 @@ func (s *Store) Runs(ctx context.Context) ([]Run, error) {
 	if err != nil {
 		return nil, err
 	}
-	rows, err := s.read.QueryContext(ctx, `SELECT r.id, r.kind, r.program, r.started_at, coalesce(r.ended_at, ''), r.outcome, r.counts, coalesce(e.id, 0), coalesce(e.state, '')
-		FROM (SELECT *, `+editionOfRun+` AS left_id FROM run) r LEFT JOIN edition e ON e.id = r.left_id ORDER BY r.id`)
+	rows, err := s.read.QueryContext(ctx, `SELECT r.id, r.kind, r.program, r.started_at, coalesce(r.ended_at, ''), r.outcome, r.counts, coalesce(e.id, 0), coalesce(e.state, ''), r.is_whole
+		FROM (SELECT *, `+editionOfRun+` AS left_id, `+isWholeRun+` AS is_whole FROM run) r LEFT JOIN edition e ON e.id = r.left_id ORDER BY r.id`)
 	if err != nil {
 		return nil, fmt.Errorf("read runs: %w", explain(err))
 	}
 	type row struct {
 		Run
 		started, ended, counts string
+		isWhole                bool
 	}
 	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.ID, &v.Kind, &v.Program, &v.started, &v.ended, &v.Outcome, &v.counts, &v.Edition, &v.EditionState}
+		return []any{&v.ID, &v.Kind, &v.Program, &v.started, &v.ended, &v.Outcome, &v.counts, &v.Edition, &v.EditionState, &v.isWhole}
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read runs: %w", err)
 	}
 	out := make([]Run, len(found))
 	for i, v := range found {
+		if !v.isWhole {
+			return nil, fmt.Errorf("%s: %w", s.path, alteredRun(v.ID))
+		}
 		v.Counts = json.RawMessage(v.counts)
 		var errEnded error
 		v.Started, err = parseTime(v.started)

@@ -58,10 +58,8 @@ var sealedQuestions = [][]string{
 	{"query", "records", "--as-of", "1", "--format", "json"},
 	{"export", "ordinates"},
 	{"export", "measures"},
-	runsShow,
+	{"runs", "show", "2", "--json"},
 }
-
-var runsShow = []string{"runs", "show", "2", "--json"}
 
 // replied is what a question gives: stdout, and stderr where it fails.
 type replied struct {
@@ -311,4 +309,26 @@ func contentOf(t *testing.T, store string) []byte {
 		t.Fatal(err)
 	}
 	return whole
+}
+
+// TestChangesOfRunsAreRefused: what a run left is found by its row, and told by it.
+func TestChangesOfRunsAreRefused(t *testing.T) {
+	path, _ := sealedStore(t)
+	whole := contentOf(t, path)
+	for _, column := range []string{"kind", "program", "started_at", "ended_at", "outcome", "counts", "edition_id"} {
+		value := map[string]string{"outcome": "'failed'", "counts": "'{}'", "edition_id": "3 - edition_id"}[column]
+		if value == "" {
+			value = column + " || 'x'"
+		}
+		store := altered(t, whole, `DROP TRIGGER run_changed; UPDATE run SET `+column+` = `+value+` WHERE id = 1`)
+		for _, q := range [][]string{{"runs", "--json"}, {"runs", "show", "1"}, {"query", "records", "--as-of", "1"}} {
+			r := asked(t.Context(), store, q)
+			if r.code != exitFailed || r.out != "" || !strings.Contains(r.reason, store+": ") || !strings.Contains(r.reason, "the store is damaged: run 1 ") {
+				t.Errorf("%s: %v: %d %s%s", column, q, r.code, r.out, r.reason)
+			}
+		}
+		if faults := faultsIn(t, store); !slices.Contains(faults, "run") {
+			t.Errorf("%s: verify finds faults in %v", column, faults)
+		}
+	}
 }
