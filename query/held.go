@@ -56,7 +56,7 @@ func (a *RecordsAnswer) Quality() *Sheet {
 			t.add(flag.name, of, strconv.Itoa(n), by)
 		}
 	}
-	s := &Sheet{Title: "Quality", Lines: []string{fmt.Sprintf("Nothing was found in %d of %s.", clean, countOf(len(a.Rows), "component", "components"))}}
+	s := &Sheet{Title: "Records and their quality", Lines: []string{fmt.Sprintf("Nothing was found in %d of %s.", clean, countOf(len(a.Rows), "component", "components"))}}
 	if len(t.rows) > 0 {
 		s.Tables = []Table{t.export("")}
 	}

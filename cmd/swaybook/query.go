@@ -65,6 +65,9 @@ func asOfFlag() cli.Flag {
 
 const asOf = "as-of"
 
+// against is the flag of the run that the figure of spectra compares with.
+const against = "against"
+
 func formatFlag(choices string) cli.Flag {
 	return &cli.StringFlag{Name: "format", Value: "table", Usage: choices}
 }
@@ -113,6 +116,7 @@ func querySpectrumCommand() *cli.Command {
 			plotFlag(),
 			axesFlag("of the figure: log, linear, or four-way (PSV, with diagonals of SD and PSA)"),
 			markFlag(),
+			&cli.Int64Flag{Name: against, DefaultText: "none", Usage: "draw what changed against what `RUN` had left, a number of swaybook runs"},
 		),
 		Action: func(c *cli.Context) error {
 			o, err := newSpectrumOptions(c)
@@ -131,6 +135,7 @@ type spectrumOptions struct {
 	format   query.Format
 	units    query.Units
 	plot     plotOptions
+	against  int64 // the run whose answer the figure compares with, 0 for none
 }
 
 func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
@@ -152,6 +157,17 @@ func newSpectrumOptions(c *cli.Context) (o spectrumOptions, err error) {
 	q.Each = o.plot.file != ""
 	if o.plot.axes == axesFourWay {
 		q.Measure = query.MeasurePSV
+	}
+	if c.IsSet(against) {
+		o.against = c.Int64(against)
+		switch {
+		case o.against < 1:
+			err = errors.Join(err, ofFlag(against, usagef("--against %d: want the number of a run", o.against)))
+		case o.plot.file == "":
+			err = errors.Join(err, ofFlag(against, usagef("--against goes with --plot")))
+		default:
+			err = errors.Join(err, exclude(c, []string{"axes", "mark"}, "--against has a figure of its own, without --%s"))
+		}
 	}
 	return o, err
 }
@@ -211,11 +227,32 @@ func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, std
 		return err
 	}
 	if o.plot.file != "" {
-		if err := o.plot.write(o.plot.of(answer, o.units)); err != nil {
+		drawn := o.plot.of(answer, o.units)
+		if o.against != 0 {
+			if drawn, err = o.changes(ctx, store, answer); err != nil {
+				return err
+			}
+		}
+		if err := o.plot.write(drawn); err != nil {
 			return err
 		}
 	}
 	return writeAnswer(answer, o.format, o.units, w, stderr)
+}
+
+// changes is the figure of how an answer differs from that as of an earlier run.
+func (o *spectrumOptions) changes(ctx context.Context, store *db.Store, answer *query.SpectrumAnswer) (figure, error) {
+	q := o.question
+	q.AsOf, q.AnySolver = o.against, true
+	before, err := q.Ask(ctx, store)
+	if err != nil {
+		return figure{}, fmt.Errorf("run %d: %w", o.against, err)
+	}
+	is := "now"
+	if o.question.AsOf != 0 {
+		is = fmt.Sprintf("run %d", o.question.AsOf)
+	}
+	return figure{answer.Changes(before, fmt.Sprintf("run %d", o.against), is, o.units), chart.Half}, nil
 }
 
 func queryRecordsCommand() *cli.Command {

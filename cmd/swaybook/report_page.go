@@ -136,6 +136,9 @@ func (m *paginator) addRecords(ctx context.Context, p *report.Page, run *db.RunD
 		{Name: "state of the store", Value: fmt.Sprintf("edition %d, by a run of %s", m.edition, run.Started.UTC().Format(time.DateTime+" UTC"))},
 	}
 	s := report.Of(m.names.ID("quality"), a.Quality())
+	if scatter := a.Chart(); !errors.Is(chart.Write(io.Discard, chart.Inline, chart.Half, scatter), chart.ErrNothing) {
+		s.Figures = []report.Figure{{Caption: "Magnitude and distance of the records.", Chart: scatter, Size: chart.Half}}
+	}
 	p.Sections = append(p.Sections, s)
 	return nil
 }
@@ -163,8 +166,8 @@ func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDet
 		p.Sections = append(p.Sections, s)
 		return nil
 	}
+	var err error
 	if m.drift == nil || m.drift.Since != run.Before {
-		var err error
 		if m.drift, _, err = m.outputs.drift(ctx, m.plan.asked(), m.edition, run.Before, nil, func(int, int) {}); err != nil {
 			return err
 		}
@@ -175,11 +178,50 @@ func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDet
 		s.Lines = append(s.Lines, strings.Split(strings.TrimSpace(text.String()), "\n")...)
 	}
 	s.Tables = m.drift.tables()
+	if s.Figures, err = m.changes(ctx); err != nil {
+		return err
+	}
 	if len(s.Tables) == 0 {
 		s.Lines = append(s.Lines, "All figures and motions are as before.")
 	}
 	p.Sections = append(p.Sections, s)
 	return nil
+}
+
+// changes are figures of spectra that changed.
+func (m *paginator) changes(ctx context.Context) (out []report.Figure, err error) {
+	for i := range m.plan.products {
+		p := &m.plan.products[i]
+		if !slices.ContainsFunc(m.drift.Products, func(d productDrift) bool { return d.Product == p.path && d.Changed > 0 }) {
+			continue
+		}
+		is, units, ok := spectrumOf(m.outputs.answers[p.path])
+		if !ok {
+			continue
+		}
+		r, err := m.outputs.ask(ctx, p, moment{m.drift.Since, true})
+		if err != nil {
+			return nil, err
+		}
+		was, _, ok := spectrumOf(r)
+		if !ok {
+			continue
+		}
+		c := is.Changes(was, fmt.Sprintf("edition %d", m.drift.Since), fmt.Sprintf("edition %d", m.edition), units)
+		if len(c.Pairs) > 0 {
+			out = append(out, report.Figure{Caption: p.path + ": before and after, and the change in percent.", Chart: c, Size: chart.Half})
+		}
+	}
+	return out, nil
+}
+
+// spectrumOf is the answer of a reply that is of spectra.
+func spectrumOf(r reply) (a *query.SpectrumAnswer, units query.Units, ok bool) {
+	if of, isOne := r.answer.(inUnits); isOne {
+		a, ok = of.statistics.(*query.SpectrumAnswer)
+		units = of.units
+	}
+	return a, units, ok
 }
 
 // tables are the changes, and what happened to the motions.

@@ -27,7 +27,7 @@ var (
 
 // noKeys are the flags of questions that a study may not set: it has its own way to say
 // where answers go, and asks for what is published.
-var noKeys = []string{"format", asOf, "plot"}
+var noKeys = []string{"format", asOf, against, "plot"}
 
 // figureKeys are the flags of figures.
 var figureKeys = []string{"axes", "mark"}

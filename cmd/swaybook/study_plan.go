@@ -346,14 +346,9 @@ func (p *planner) selections() {
 // written as a figure.
 func (p *planner) withFigures(described *study.Product) []study.Setting {
 	settings := slices.Clone(described.Settings)
-	command := productCommands[described.Kind]()
 	for _, f := range described.Files {
 		if !f.Format.IsFigure() {
 			continue
-		}
-		if !slices.ContainsFunc(command.Flags, func(f cli.Flag) bool { return f.Names()[0] == "plot" }) {
-			p.fail(f.Line, described.Path()+".files", usagef("%s: there is no figure of %s", filepath.Base(f.Value), described.Kind))
-			return settings
 		}
 		return append(settings, study.Setting{Key: "plot", Text: f.Text})
 	}

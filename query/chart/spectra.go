@@ -66,7 +66,7 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	s.drawCurves(&f, &f)
 	s.drawMarks(&f)
 	f.axes(false)
-	s.drawCounts(&strip)
+	s.drawCounts(&strip, 1)
 	s.foot(c)
 	return nil
 }
@@ -216,9 +216,9 @@ func (s *Spectra) drawMarks(f *frame) {
 	}
 }
 
-// drawCounts draws how many spectra count at each period.
-func (s *Spectra) drawCounts(f *frame) {
-	most := 1
+// drawCounts draws how many spectra count at each period, on an axis that reaches up to a
+// number at least.
+func (s *Spectra) drawCounts(f *frame, most int) {
 	values := make([]float64, len(s.Counts))
 	for i, n := range s.Counts {
 		most, values[i] = max(most, n), float64(n)
