@@ -17,7 +17,8 @@ func (s *Store) ViewAsOf(ctx context.Context, runID int64, f func(*Snapshot) err
 	return s.view(ctx, missing, f, `id = (SELECT `+editionOfRun+` FROM run WHERE id = ? AND `+isWholeRun+`)`, runID)
 }
 
-// isWholeRun says of a run that its row is what was written.
+// isWholeRun says of a run that its row is what was written. What is pruned is no longer in
+// it, so that the edition which it names is there.
 const isWholeRun = `seal = crc32c(id, kind, program, started_at, ended_at, outcome, counts, edition_id)`
 
 // alteredRun is the error of a run whose row is not.
@@ -76,7 +77,7 @@ func noEdition(ctx context.Context, q queryer, run int64) error {
 	if err != nil {
 		return fmt.Errorf("read runs: %w", err)
 	}
-	whole, err := idOf(ctx, q, `SELECT id FROM run WHERE id = ? AND `+isWholeRun, run)
+	whole, err := idOf(ctx, q, `SELECT id FROM run WHERE id = ? AND edition_id IS NULL AND `+isWholeRun, run)
 	if err != nil {
 		return fmt.Errorf("read runs: %w", err)
 	}

@@ -38,7 +38,7 @@ func (s *Store) Runs(ctx context.Context) ([]Run, error) {
 	if err != nil {
 		return nil, err
 	}
-	rows, err := s.read.QueryContext(ctx, `SELECT r.id, r.kind, r.program, r.started_at, coalesce(r.ended_at, ''), r.outcome, r.counts, coalesce(e.id, 0), coalesce(e.state, ''), r.is_whole
+	rows, err := s.read.QueryContext(ctx, `SELECT r.id, r.kind, r.program, r.started_at, coalesce(r.ended_at, ''), r.outcome, r.counts, coalesce(e.id, 0), coalesce(e.state, ''), r.is_whole AND (r.edition_id IS NULL OR e.id IS NOT NULL)
 		FROM (SELECT *, `+editionOfRun+` AS left_id, `+isWholeRun+` AS is_whole FROM run) r LEFT JOIN edition e ON e.id = r.left_id ORDER BY r.id`)
 	if err != nil {
 		return nil, fmt.Errorf("read runs: %w", explain(err))

@@ -311,6 +311,17 @@ func contentOf(t *testing.T, store string) []byte {
 	return whole
 }
 
+// TestLostEditionsAreRefused: a run names the edition that it left as long as that is kept.
+func TestLostEditionsAreRefused(t *testing.T) {
+	path, _ := sealedStore(t)
+	store := altered(t, contentOf(t, path), `PRAGMA foreign_keys = OFF; DELETE FROM edition WHERE id = 1`)
+	for _, q := range [][]string{{"runs", "--json"}, {"runs", "show", "1"}, {"query", "records", "--as-of", "1"}} {
+		if r := asked(t.Context(), store, q); r.code != exitFailed || r.out != "" || !strings.Contains(r.reason, "the store is damaged: run 1 ") {
+			t.Errorf("%v: %d %s%s", q, r.code, r.out, r.reason)
+		}
+	}
+}
+
 // TestChangesOfRunsAreRefused: what a run left is found by its row, and told by it.
 func TestChangesOfRunsAreRefused(t *testing.T) {
 	path, _ := sealedStore(t)
