@@ -9,7 +9,9 @@ import (
 	"io"
 	"math"
 	"math/rand/v2"
+	"regexp"
 	"slices"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -239,17 +241,32 @@ func TestSimplify(t *testing.T) {
 func TestOutline(t *testing.T) {
 	style := writing(10, ink)
 	face := fonts.Lookup(style.Font, style.Font.Size)
-	path := outline(face, vg.Point{X: 5, Y: 7}, "HAVEH")
-	lowest, left, right := vg.Length(math.Inf(1)), vg.Length(math.Inf(1)), vg.Length(math.Inf(-1))
-	for _, p := range path {
-		if p.Type == vg.CloseComp {
-			continue
-		}
-		lowest, left, right = min(lowest, p.Pos.Y), min(left, p.Pos.X), max(right, p.Pos.X)
+	var g glyphs
+	element := g.element(face, vg.Point{X: 5, Y: 7}, "HA VEH")
+	if n := strings.Count(g.definitions.String(), "<path "); n != 4 { // H, A, V, E
+		t.Errorf("%d definitions of four letters", n)
 	}
-	// An H has as much room on its left as on its right.
-	if width := face.Width("HAVEH"); math.Abs(float64((right-5)+(left-5)-width)) > 0.05 || math.Abs(float64(lowest-7)) > 0.05 {
-		t.Errorf("outlines from %v to %v above %v, the width is %v", left, right, lowest, width)
+	ids := regexp.MustCompile(`#(g\d+)" x="(\d+)"`).FindAllStringSubmatch(element, -1)
+	if len(ids) != 5 || ids[0][1] != ids[4][1] || ids[0][2] != "0" {
+		t.Fatalf("glyphs %v", ids)
 	}
-
+	// An H has as much room on its left as on its right, and stands on the line.
+	numbers := regexp.MustCompile(`-?\d+`).FindAllString(regexp.MustCompile(`id="` + ids[0][1] + `" d="([^"]*)"`).FindStringSubmatch(g.definitions.String())[1], -1)
+	left, right, lowest := math.Inf(1), math.Inf(-1), math.Inf(1)
+	for i := 0; i < len(numbers); i += 2 {
+		x, _ := strconv.Atoi(numbers[i])
+		y, _ := strconv.Atoi(numbers[i+1])
+		left, right, lowest = min(left, float64(x)), max(right, float64(x)), min(lowest, float64(y))
+	}
+	last, err := strconv.ParseFloat(ids[4][2], 64)
+	if err != nil {
+		t.Fatal(err)
+	}
+	perEm := float64(face.Face.UnitsPerEm())
+	if width := float64(face.Width("HA VEH")) / 10 * perEm; math.Abs(last+right+left-width) > perEm/100 || lowest != 0 {
+		t.Errorf("outlines from %g to %g above %g, the width is %g", left, last+right, lowest, width)
+	}
+	if !strings.HasPrefix(element, `<g transform="translate(5.00 7.00) scale(0.0048828)">`) {
+		t.Errorf("the element is %s", element[:60])
+	}
 }
