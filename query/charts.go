@@ -83,7 +83,7 @@ func (a *SpectrumAnswer) FourWay(units Units, marks []chart.Mark) *chart.FourWay
 	a.toPSV(flat)
 	c := &chart.FourWay{
 		Title: "Four-way spectrum, damping " + percentText(a.Damping), Notes: flat.Notes, Foot: flat.Foot, PeriodsS: a.PeriodsS,
-		Units: chart.FourWayUnits{SD: sd, PSV: psv, SDInM: sdInM, PSVInMPS: psvInMPS}, Each: flat.Each, Curves: flat.Curves,
+		Units: chart.FourWayUnits{SD: sd, PSV: psv, SDInM: sdInM, PSVInMPS: psvInMPS}, Each: flat.Each, Curves: flat.Curves, Counts: flat.Counts,
 	}
 	for _, m := range marks {
 		for _, kind := range []chart.Kind{chart.Median, chart.Mean} {

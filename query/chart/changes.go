@@ -61,9 +61,9 @@ func (s *Changes) Draw(c draw.Canvas) error {
 	bottom := footRoom + bottomRoom
 	x := newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)
 	upper := frame{x: x, y: newAxis(s.Quantity, lowest, highest, true)}
-	upper.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+changeRoom+16, -base.headingRoom())
+	upper.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+changeRoom+2*stripGap, -base.headingRoom())
 	lower := frame{x: x, y: s.changeAxis()}
-	lower.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+8, 0)
+	lower.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, 0)
 	lower.Max.Y = lower.Min.Y + changeRoom
 	strip := frame{x: x}
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)

@@ -27,6 +27,7 @@ type FourWay struct {
 	Each     [][]float64 // PSV in m/s, a value a period, NaN for none
 	Curves   []Curve     // of PSV in m/s
 	Readings []Reading
+	Counts   []int // a period: how many spectra hold up the curves; nil where they are no statistics
 }
 
 // FourWayUnits are the units of SD and PSV; PSA is in g.
@@ -70,7 +71,13 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 		names.Min.Y += lineRoom * vg.Length(4*n+1)
 	}
 	base.drawCurves(&f, &names)
-	f.axes(true)
+	f.axes(s.Counts == nil)
+	if s.Counts != nil {
+		strip := f
+		strip.Max.Y = f.Min.Y - stripGap
+		strip.Min.Y = strip.Max.Y - stripRoom
+		base.drawCounts(&strip, 1)
+	}
 	for i := range s.Readings {
 		s.read(&f, &s.Readings[i], i)
 	}
@@ -80,7 +87,7 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 
 // base is what the chart has in common with one of spectra.
 func (s *FourWay) base() *Spectra {
-	return &Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves}
+	return &Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves, Counts: s.Counts}
 }
 
 // mostSpan is the greatest PSV over the least that is shown: more decades leave no room for
@@ -94,7 +101,11 @@ func (s *FourWay) layout(c draw.Canvas, base *Spectra) frame {
 	per := s.Units.PSVInMPS
 	f := frame{x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)}
 	f.y = inUnit(newAxis("PSV ("+s.Units.PSV+")", lowest/per, highest/per, true), per)
-	f.Canvas = equalDecades(draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -base.headingRoom()), &f)
+	bottom := footRoom + bottomRoom
+	if s.Counts != nil {
+		bottom += stripRoom + stripGap
+	}
+	f.Canvas = equalDecades(draw.Crop(c, leftRoom, -rightRoom, bottom, -base.headingRoom()), &f)
 	return f
 }
 

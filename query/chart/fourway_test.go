@@ -89,3 +89,20 @@ func TestReadings(t *testing.T) {
 		t.Error("a reading outside the chart is written")
 	}
 }
+
+// TestFourWayCounts: statistics have the strip of counts below them, one record's spectra none.
+func TestFourWayCounts(t *testing.T) {
+	for _, counts := range [][]int{nil, {3, 41, 7}} {
+		s := inventedFourWay()
+		if counts != nil {
+			s.Counts = append(counts, make([]int, len(s.PeriodsS)-len(counts))...)
+		}
+		text := string(written(t, Inline, s))
+		if got := strings.Contains(text, ">count<") && strings.Contains(text, ">41<"); got != (counts != nil) {
+			t.Errorf("counts %v: a strip is there: %v", counts, got)
+		}
+		if !strings.Contains(text, ">period (s)<") {
+			t.Errorf("counts %v: the axis of periods has no name", counts)
+		}
+	}
+}

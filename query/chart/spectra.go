@@ -48,6 +48,7 @@ const (
 	rightRoom vg.Length = 92 // of the curves' names
 	lineRoom  vg.Length = 10
 	stripRoom vg.Length = 34
+	stripGap  vg.Length = 8
 	footRoom  vg.Length = 14
 )
 
@@ -81,7 +82,7 @@ func (s *Spectra) layout(c draw.Canvas) (f, strip frame) {
 	}
 	strip = f
 	bottom := footRoom + bottomRoom
-	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+8, -s.headingRoom())
+	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, -s.headingRoom())
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
 	strip.Max.Y = strip.Min.Y + stripRoom
 	return f, strip
