@@ -50,6 +50,7 @@ func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
 		name, kind := percentileName(a.Percentiles[i])
 		bands = append(bands, add(name, kind, func(r *Reduction) float64 { return r.Percentiles[i] }))
 	}
+	bands = slices.DeleteFunc(bands, func(values []float64) bool { return !slices.ContainsFunc(values, isDefined) }) // too few
 	if last := len(bands) - 1; last > 0 {
 		c.Band = chart.Region{Low: bands[0], High: bands[last]}
 	}

@@ -15,6 +15,13 @@ func (g Governing) take(r *Reduction) {
 	}
 }
 
+// Add adds the counts of another one.
+func (g Governing) Add(other Governing) {
+	for code, n := range other {
+		g[code] += n
+	}
+}
+
 // Codes are the records, those that govern most first.
 func (g Governing) Codes() []string {
 	return slices.SortedFunc(maps.Keys(g), func(a, b string) int { return cmp.Or(g[b]-g[a], cmp.Compare(a, b)) })

@@ -41,7 +41,7 @@ func (r *PortfolioRow) Sheet(a *PortfolioAnswer, units Units) *Sheet {
 		out.Tables = append(out.Tables, over.export(r.Band.title()))
 	}
 	if len(r.Limits) > 0 {
-		limits := r.ratios(a)
+		limits := r.ratios(a, units)
 		out.Tables = append(out.Tables, limits.export("Demand over capacity"))
 	}
 	return out
@@ -64,14 +64,15 @@ func (r *PortfolioRow) statistics(quantities []Quantity, list []statistic, selec
 }
 
 // ratios has a row a capacity.
-func (r *PortfolioRow) ratios(a *PortfolioAnswer) table {
+func (r *PortfolioRow) ratios(a *PortfolioAnswer, units Units) table {
 	t := table{columns: []column{{name: "capacity", isWord: true}, {name: "limit"}, {name: "unit", isWord: true}}}
 	for _, p := range a.Percentiles {
 		t.columns = append(t.columns, column{name: "ratio p" + percentKey(p)})
 	}
 	t.columns = append(t.columns, column{name: "greatest"}, column{name: "above"}, column{name: "count"}, column{name: "governing", isWord: true})
 	for _, l := range r.Limits {
-		row := []string{limitWords[l.Name].title, figure(l.Limit), limitWords[l.Name].unit}
+		title, unit, per := limitIn(l.Name, units)
+		row := []string{title, figure(l.Limit / per), unit}
 		for i := range a.Percentiles {
 			row = append(row, figure(l.Percentiles[i]))
 		}
@@ -80,7 +81,12 @@ func (r *PortfolioRow) ratios(a *PortfolioAnswer) table {
 	return t
 }
 
-// limitWords are the capacities for people, in SI.
-var limitWords = map[string]struct{ title, unit string }{
-	"displacement": {"displacement", "m"}, "base_shear": {"base shear", "N"}, "drift": {"displacement over height", "1"},
+// limitIn is a capacity for people, with the unit of what it is of.
+func limitIn(name string, units Units) (title, unit string, per float64) {
+	of, ok := map[string]string{"displacement": "sd_m", "base_shear": "base_shear_n"}[name]
+	if !ok {
+		return "displacement over height", "1", 1
+	}
+	unit, per = quantityUnits[of].in(units)
+	return quantityUnits[of].title, unit, per
 }

@@ -65,6 +65,9 @@ func reportPlace(c *cli.Context, plan *studyPlan) (string, error) {
 		return out, nil
 	}
 	info, err := os.Stat(out)
+	if ext := filepath.Ext(out); err != nil && ext != "" && !strings.EqualFold(ext, ".html") {
+		return "", ofFlag("out", usagef("--out %q: want a file that ends in .html, or a folder", out))
+	}
 	if isFolder := err == nil && info.IsDir(); isFolder || !strings.EqualFold(filepath.Ext(out), ".html") {
 		out = filepath.Join(out, "report.html")
 	}

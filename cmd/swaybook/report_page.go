@@ -14,6 +14,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline/condition"
+	"swaybook/pipeline/study"
 	"swaybook/query"
 	"swaybook/query/chart"
 	"swaybook/query/report"
@@ -69,7 +70,7 @@ func (m *paginator) product(p *product) report.Section {
 		return report.Section{ID: id, Title: p.path, Lines: []string{"No answer: " + r.empty.Error()}}
 	}
 	s := r.answer.Section(id, m.names)
-	s.Lines = append([]string{p.path}, s.Lines...)
+	s.Title = p.path + ": " + s.Title
 	return s
 }
 
@@ -78,15 +79,19 @@ const mostSheets = 8
 
 // addGoverning shows the records that govern most, each whole.
 func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunDetails) error {
-	all := query.Governing{}
+	all, ofStructures := query.Governing{}, query.Governing{}
 	for i := range m.plan.products {
-		if r := m.outputs.answers[m.plan.products[i].path]; r.empty == nil {
-			for code, n := range r.answer.Governing() {
-				all[code] += n
+		p := &m.plan.products[i]
+		if r := m.outputs.answers[p.path]; r.empty == nil {
+			g := r.answer.Governing()
+			all.Add(g)
+			if strings.HasPrefix(p.path, string(study.Demand)+".") {
+				ofStructures.Add(g)
 			}
 		}
 	}
-	codes := all.Codes()
+	// Those of structures come first: there are many more periods.
+	codes := slices.Concat(ofStructures.Codes(), slices.DeleteFunc(all.Codes(), func(code string) bool { return ofStructures[code] > 0 }))
 	if len(codes) == 0 {
 		return nil
 	}
@@ -107,7 +112,7 @@ func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunD
 		parts[code] = part.ID
 		s.Parts = append(s.Parts, part)
 	}
-	s.Tables = []report.Table{{Table: t, IsLong: len(t.Rows) > 40}}
+	s.Tables = []report.Table{{Table: t, IsLong: len(t.Rows) > report.LongRows}}
 	if len(codes) > mostSheets {
 		s.Remarks = []string{fmt.Sprintf("shown whole are the first %d; swaybook query record CODE --plot FILE draws any", mostSheets)}
 	}

@@ -159,8 +159,7 @@ func newDemandAsker(c *cli.Context) (asker, error) {
 	}
 	o, err := newDemandOptions(c)
 	section := func(id string, a *query.DemandAnswer, _ report.Names) report.Section {
-		f := o.figure(a, o.units)
-		return report.Demand(id, a, o.units, f.Chart, f.size)
+		return report.Demand(id, a, o.units, o.plot.axes == axesLinear, o.figure(a, o.units).size)
 	}
 	ask := func(ctx context.Context, store *db.Store, at moment) (*query.DemandAnswer, error) {
 		q := o.question

@@ -9,7 +9,9 @@ var methods = [][]string{
 	{"All directions", "rotd50 and rotd100 are the median and the maximum, period by period, over all horizontal directions.", "Boore 2010"},
 	{"Percentiles", "Order statistics with straight lines between; none where the sample does not support it, from 1/(n + 1) to n/(n + 1).", "Hyndman and Fan 1996, type 7; Gumbel 1958"},
 	{"Demand", "Base shear is mass times PSA, base moment that times the height, peak strain energy ½·m·PSV².", "Chopra, Dynamics of Structures"},
-	{"Measures", "Arias intensity, cumulative absolute velocity, significant and bracketed durations, mean period.", "Arias 1970; EPRI 1988; Trifunac and Brady 1975; Bolt 1973; Rathje, Abrahamson and Bray 1998"},
+	{"Exceedance", "Of n motions k above a value are the share k/n; of balanced motions the share of weight.", "the empirical distribution function"},
+	{"Design spectrum", "Elastic, as the study's file describes it; its kind and parameters stand beside the spectra.", "the code that the file names"},
+	{"Measures", "Arias intensity, cumulative absolute velocity, significant and bracketed durations, mean period, spectrum intensity SI.", "Arias 1970; EPRI 1988; Trifunac and Brady 1975; Bolt 1973; Rathje, Abrahamson and Bray 1998; Housner 1952"},
 	{"Usable periods", "A motion counts only at periods at which its filters and its sampling leave something to believe.", "common practice"},
 }
 

@@ -100,7 +100,8 @@ func (p *Page) Write(w io.Writer) error {
 func drawn(f Figure) (template.HTML, error) {
 	var element bytes.Buffer
 	err := chart.Write(&element, chart.Inline, f.Size, f.Chart)
-	return template.HTML(element.String()), err
+	named := fmt.Sprintf(`<svg role="img" aria-label="%s" `, template.HTMLEscapeString(f.Caption))
+	return template.HTML(strings.Replace(element.String(), "<svg ", named, 1)), err
 }
 
 // Anchor makes an ID of words. Different words may have one ID; the caller sees to that.

@@ -1,6 +1,7 @@
 package report
 
 import (
+	"errors"
 	"fmt"
 	"io"
 	"slices"
@@ -27,15 +28,15 @@ func (n Names) ID(words ...string) string {
 	return id
 }
 
-// longRows is from how many rows on a table is closed at first, and searched; detailed is of
-// how many structures, the worst, a page tells all.
-const longRows, detailed = 40, 200
+// LongRows is from how many rows on a table is closed at first; detailed is of how many
+// structures, the worst, a page tells all.
+const LongRows, detailed = 40, 200
 
 // Of is a section with what a sheet says.
 func Of(id string, s *query.Sheet) Section {
 	out := Section{ID: id, Title: s.Title, Lines: s.Lines, Remarks: s.Remarks}
 	for _, t := range s.Tables {
-		out.Tables = append(out.Tables, Table{Table: t, IsLong: len(t.Rows) > longRows, HasFilter: len(t.Rows) > 8})
+		out.Tables = append(out.Tables, Table{Table: t, IsLong: len(t.Rows) > LongRows, HasFilter: len(t.Rows) > 8})
 	}
 	return out
 }
@@ -59,18 +60,25 @@ func Spectrum(id string, a *query.SpectrumAnswer, units query.Units, marks []cha
 			out.Figures = append(out.Figures, f)
 		}
 	}
-	figure("Spectra of all motions with their percentiles; the strip counts the motions that hold them up.", a.Chart(units, marks, isLinear), chart.Half)
+	// What figures have as notes stands above them already.
+	flat := a.Chart(units, marks, isLinear)
+	flat.Notes = nil
+	figure("Spectra of all motions with their percentiles; the strip counts the motions that hold them up.", flat, chart.Half)
 	if a.HasFourWay() {
-		figure("Four-way chart: pseudo-velocity upwards, displacement and pseudo-acceleration along the diagonals.", a.FourWay(units, marks), chart.Square)
+		c := a.FourWay(units, marks)
+		c.Notes = nil
+		figure("Four-way chart: pseudo-velocity upwards, displacement and pseudo-acceleration along the diagonals.", c, chart.Square)
 	}
 	return out
 }
 
 // Demand is the section of one structure: how many motions exceed what, and the tables. The
 // answer has the motions' values.
-func Demand(id string, a *query.DemandAnswer, units query.Units, c chart.Chart, size chart.Size) Section {
+func Demand(id string, a *query.DemandAnswer, units query.Units, isLinear bool, size chart.Size) Section {
 	out := Of(id, a.Sheet(units))
-	if chart.Write(io.Discard, chart.Inline, size, c) == nil { // else there is nothing to draw
+	c := a.Chart(units, isLinear)
+	c.Notes = nil // they stand above it already
+	if !errors.Is(chart.Write(io.Discard, chart.Inline, size, c), chart.ErrNothing) {
 		out.Figures = []Figure{{Caption: "How many motions exceed a demand.", Chart: c, Size: size}}
 	}
 	return out
