@@ -98,9 +98,9 @@ func TestColumnsKeepTheExtremes(t *testing.T) {
 			s.low, s.high, s.points = min(s.low, value), max(s.high, value), s.points+1
 		}
 		for i, v := range trace.Values {
-			p := f.point(trace.FromS+trace.StepS*float64(i), v)
+			p := f.point(trace.FromS+float64(trace.StepS*float64(i)), v)
 			s := drawn[int((p.X-f.Min.X)/hair)]
-			if f.x.has(trace.FromS+trace.StepS*float64(i)) && (s == nil || v < s.low-1e-9 || v > s.high+1e-9 || s.points > 2) {
+			if f.x.has(trace.FromS+float64(trace.StepS*float64(i))) && (s == nil || v < s.low-1e-9 || v > s.high+1e-9 || s.points > 2) {
 				t.Fatalf("%d samples: sample %d, %v, is beyond what is drawn, %+v", n, i, v, s)
 			}
 		}

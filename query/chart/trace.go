@@ -98,7 +98,7 @@ func (f *frame) columns(fromS, stepS float64, values []float64) [][]vg.Point {
 	var line []vg.Point
 	least, greatest, column := -1, -1, 0
 	put := func(i int) {
-		line = append(line, f.point(fromS+stepS*float64(i), values[i]))
+		line = append(line, f.point(fromS+float64(stepS*float64(i)), values[i]))
 	}
 	flush := func() {
 		if least < 0 {
@@ -110,7 +110,7 @@ func (f *frame) columns(fromS, stepS float64, values []float64) [][]vg.Point {
 		}
 	}
 	for i, v := range values {
-		x := fromS + stepS*float64(i)
+		x := fromS + float64(stepS*float64(i)) // rounded, so that both places fall into one column
 		if !f.x.has(x) {
 			continue
 		}
