@@ -97,16 +97,16 @@ func (l *Limits) of(quantity string, heightM *float64) (out []limit) {
 	return out
 }
 
+// limited are the quantities that capacities limit, but for a drift ratio, which has no unit.
+var limited = map[string]quantityUnit{"displacement": quantityUnits["sd_m"], "base_shear": quantityUnits["base_shear_n"]}
+
 // text writes a capacity in units for people.
 func (l *LimitRatio) text(units Units) string {
-	u := quantityUnits["sd_m"]
-	switch l.Name {
-	case "drift":
+	of, ok := limited[l.Name]
+	if !ok {
 		return percentText(l.Limit)
-	case "base_shear":
-		u = quantityUnits["base_shear_n"]
 	}
-	name, per := u.in(units)
+	name, per := of.in(units)
 	return figure(l.Limit/per) + " " + name
 }
 

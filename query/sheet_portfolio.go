@@ -83,10 +83,10 @@ func (r *PortfolioRow) ratios(a *PortfolioAnswer, units Units) table {
 
 // limitIn is a capacity for people, with the unit of what it is of.
 func limitIn(name string, units Units) (title, unit string, per float64) {
-	of, ok := map[string]string{"displacement": "sd_m", "base_shear": "base_shear_n"}[name]
+	of, ok := limited[name]
 	if !ok {
 		return "displacement over height", "1", 1
 	}
-	unit, per = quantityUnits[of].in(units)
-	return quantityUnits[of].title, unit, per
+	unit, per = of.in(units)
+	return of.title, unit, per
 }

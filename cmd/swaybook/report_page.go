@@ -27,7 +27,6 @@ type pageOf struct {
 }
 
 func (p pageOf) Write(w io.Writer, _ query.Format) error     { return p.Page.Write(w) }
-func (p pageOf) HasFigure() bool                             { return false }
 func (p pageOf) Draw(io.Writer, chart.Format) error          { return errNoFigure }
 func (p pageOf) Governing() query.Governing                  { return nil }
 func (p pageOf) Remarks() string                             { return "" }
@@ -141,9 +140,7 @@ func (m *paginator) addRecords(ctx context.Context, p *report.Page, run *db.RunD
 		{Name: "state of the store", Value: fmt.Sprintf("edition %d, by a run of %s", m.edition, run.Started.UTC().Format(time.DateTime+" UTC"))},
 	}
 	s := report.Of(m.names.ID("quality"), a.Quality())
-	if scatter := a.Chart(); !errors.Is(chart.Write(io.Discard, chart.Inline, chart.Half, scatter), chart.ErrNothing) {
-		s.Figures = []report.Figure{{Caption: "Magnitude and distance of the records.", Chart: scatter, Size: chart.Half}}
-	}
+	s.Figures = report.Drawn("Magnitude and distance of the records.", a.Chart(), chart.Half)
 	p.Sections = append(p.Sections, s)
 	return nil
 }
@@ -171,8 +168,8 @@ func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDet
 		p.Sections = append(p.Sections, s)
 		return nil
 	}
-	var err error
 	if m.drift == nil || m.drift.Since != run.Before {
+		var err error
 		if m.drift, _, err = m.outputs.drift(ctx, m.plan.asked(), m.edition, run.Before, nil, func(int, int) {}); err != nil {
 			return err
 		}
@@ -183,9 +180,7 @@ func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDet
 		s.Lines = append(s.Lines, strings.Split(strings.TrimSpace(text.String()), "\n")...)
 	}
 	s.Tables = m.drift.tables()
-	if s.Figures, err = m.changes(ctx); err != nil {
-		return err
-	}
+	s.Figures = m.changes()
 	if len(s.Tables) == 0 {
 		s.Lines = append(s.Lines, "All figures and motions are as before.")
 	}
@@ -194,22 +189,12 @@ func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDet
 }
 
 // changes are figures of spectra that changed.
-func (m *paginator) changes(ctx context.Context) (out []report.Figure, err error) {
+func (m *paginator) changes() (out []report.Figure) {
 	for i := range m.plan.products {
 		p := &m.plan.products[i]
-		if !slices.ContainsFunc(m.drift.Products, func(d productDrift) bool { return d.Product == p.path && d.Changed > 0 }) {
-			continue
-		}
-		is, units, ok := spectrumOf(m.outputs.answers[p.path])
-		if !ok {
-			continue
-		}
-		r, err := m.outputs.ask(ctx, p, moment{m.drift.Since, true})
-		if err != nil {
-			return nil, err
-		}
-		was, _, ok := spectrumOf(r)
-		if !ok {
+		is, units, _ := spectrumOf(m.outputs.answers[p.path])
+		was, _, ok := spectrumOf(m.drift.before[p.path])
+		if !ok || is == nil {
 			continue
 		}
 		c := is.Changes(was, fmt.Sprintf("edition %d", m.drift.Since), fmt.Sprintf("edition %d", m.edition), units)
@@ -217,7 +202,7 @@ func (m *paginator) changes(ctx context.Context) (out []report.Figure, err error
 			out = append(out, report.Figure{Caption: p.path + ": before and after, and the change in percent.", Chart: c, Size: chart.Half})
 		}
 	}
-	return out, nil
+	return out
 }
 
 // spectrumOf is the answer of a reply that is of spectra.

@@ -24,6 +24,8 @@ type driftReport struct {
 	SolverBefore string         `json:"solver_before"`
 	Solver       string         `json:"solver"`
 	Products     []productDrift `json:"products"` // the greatest change first
+
+	before map[string]reply // of products that changed, by path
 }
 
 // productDrift is that of one product, or of a selection.
@@ -82,7 +84,7 @@ func (o *outputs) drift(ctx context.Context, asked []product, edition, since int
 	if err != nil {
 		return nil, nil, err
 	}
-	d := &driftReport{Edition: edition, Since: since, Bound: bound, Products: []productDrift{}}
+	d := &driftReport{Edition: edition, Since: since, Bound: bound, Products: []productDrift{}, before: map[string]reply{}}
 	stations, err := o.store.StationCodes(ctx, since, edition)
 	if err != nil {
 		return d, changes, err
@@ -134,6 +136,9 @@ func (c *comparison) product(ctx context.Context, p *product) error {
 	}
 	out.Causes = c.causes(was.Motions(), is.Motions())
 	c.report.Beyond += out.Beyond
+	if out.Changed > 0 {
+		c.report.before[p.path] = before
+	}
 	if out.Changed > 0 || len(out.Causes) > 0 {
 		c.report.Products = append(c.report.Products, out)
 	}

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"errors"
 	"fmt"
@@ -12,6 +13,7 @@ import (
 	"swaybook/db"
 	"swaybook/pipeline/beside"
 	"swaybook/query"
+	"swaybook/query/chart"
 )
 
 // outputs writes the answers of a study. They take their names together.
@@ -56,17 +58,30 @@ func (o *outputs) ask(ctx context.Context, p *product, at moment) (reply, error)
 // prepare writes a product's files beside those that are there.
 func (o *outputs) prepare(p *product, r reply) error {
 	for _, f := range p.files {
-		if r.empty != nil || f.format.IsFigure() && !r.answer.HasFigure() {
-			if err := o.set.Remove(f.path); err != nil {
-				return fmt.Errorf("%s: %w", p.path, err)
-			}
-			continue
-		}
-		if err := o.set.Write(f.path, func(w io.Writer) error { return f.write(r.answer, w) }); err != nil {
+		if err := o.prepareFile(&f, r); err != nil {
 			return fmt.Errorf("%s: %w", p.path, err)
 		}
 	}
 	return nil
+}
+
+// prepareFile writes a file of an answer. Without an answer, or a value that can be drawn, there
+// is none.
+func (o *outputs) prepareFile(f *outputFile, r reply) error {
+	fill := func(w io.Writer) error { return f.write(r.answer, w) }
+	isAbsent := r.empty != nil
+	if !isAbsent && f.format.IsFigure() {
+		var drawn bytes.Buffer
+		err := fill(&drawn)
+		if isAbsent = errors.Is(err, chart.ErrNothing); err != nil && !isAbsent {
+			return err
+		}
+		fill = func(w io.Writer) error { _, err := drawn.WriteTo(w); return err }
+	}
+	if isAbsent {
+		return o.set.Remove(f.path)
+	}
+	return o.set.Write(f.path, fill)
 }
 
 // swap has what was prepared take its place and notes what stands there. It can be undone

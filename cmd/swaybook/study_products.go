@@ -60,8 +60,6 @@ type answer interface {
 	Section(id string, names report.Names) report.Section
 	// Governing are the records that are the greatest of something.
 	Governing() query.Governing
-	// HasFigure reports whether there is something to draw.
-	HasFigure() bool
 	Draw(io.Writer, chart.Format) error
 	Remarks() string
 }
@@ -88,11 +86,6 @@ func (d drawn) Draw(w io.Writer, f chart.Format) error {
 	}
 	is := d.figure()
 	return chart.Write(w, f, is.size, is.Chart)
-}
-
-// HasFigure reports whether any value can be drawn. Drawing says that without a file.
-func (d drawn) HasFigure() bool {
-	return d.figure != nil && !errors.Is(d.Draw(io.Discard, chart.SVG), chart.ErrNothing)
 }
 
 // errNoFigure does not come up, since a study's reader refuses figures where there are none.

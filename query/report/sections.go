@@ -78,10 +78,16 @@ func Demand(id string, a *query.DemandAnswer, units query.Units, isLinear bool, 
 	out := Of(id, a.Sheet(units))
 	c := a.Chart(units, isLinear)
 	c.Notes = nil // they stand above it already
-	if !errors.Is(chart.Write(io.Discard, chart.Inline, size, c), chart.ErrNothing) {
-		out.Figures = []Figure{{Caption: "How many motions exceed a demand.", Chart: c, Size: size}}
-	}
+	out.Figures = Drawn("How many motions exceed a demand.", c, size)
 	return out
+}
+
+// Drawn is a figure of a chart, none where there is nothing to draw.
+func Drawn(caption string, c chart.Chart, size chart.Size) []Figure {
+	if errors.Is(chart.Write(io.Discard, chart.Inline, size, c), chart.ErrNothing) {
+		return nil
+	}
+	return []Figure{{Caption: caption, Chart: c, Size: size}}
 }
 
 // Record is the part of a record: its traces and spectra, and what is known of it. The answer
