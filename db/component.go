@@ -30,8 +30,8 @@ func held(ctx context.Context, q queryer, sha256 string) (string, bool, error) {
 	return paths[0], true, nil
 }
 
-// AddComponent stores a component, its samples (from EncodeSamples) and what
-// was computed of them, nil where that is left to later.
+// AddComponent stores a component, its samples (from EncodeSamples), nil where the store has
+// them, and what was computed of them, nil where that is left to later.
 func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data []byte, digest string, generation int64, computed *Spectra) error {
 	warnings, err := json.Marshal(append([]string{}, c.Warnings...))
 	if err != nil {
@@ -61,8 +61,15 @@ func (t *Tx) AddComponent(ctx context.Context, recordID int64, c Component, data
 	return t.addComputed(ctx, componentInputs, recordID, c.Role, generation, *computed)
 }
 
-// putSeries stores samples, which are held once.
+// putSeries stores samples, which are held once. Without data they are held.
 func (t *Tx) putSeries(ctx context.Context, data []byte, digest string) (int64, error) {
+	if data == nil {
+		id, err := t.idOf(ctx, `SELECT id FROM series WHERE sha256 = ?`, digest)
+		if err == nil && id == 0 {
+			err = fmt.Errorf("no samples with digest %s: %w", digest, ErrDamaged)
+		}
+		return id, err
+	}
 	id, err := t.put(ctx, `INSERT INTO series (sha256, data) VALUES (?, ?) ON CONFLICT (sha256) DO UPDATE SET sha256 = sha256 RETURNING id`, digest, data)
 	if err != nil {
 		return 0, fmt.Errorf("store samples: %w", err)

@@ -16,9 +16,10 @@ type InspectedSeries struct {
 	samples int
 }
 
-// Series returns the series that components have, in the working state or an edition.
+// Series returns the series that components have, in the working state or an edition, or
+// that reading gave.
 func (i *Inspection) Series(ctx context.Context) (out []InspectedSeries, err error) {
-	err = look(ctx, i, "series", `SELECT s.id, s.sha256, n.samples FROM (SELECT series_id, samples FROM component UNION SELECT series_id, samples FROM edition_component) n
+	err = look(ctx, i, "series", `SELECT s.id, s.sha256, n.samples FROM (SELECT series_id, samples FROM component UNION SELECT series_id, samples FROM edition_component UNION SELECT series_id, samples FROM intake_series) n
 		JOIN series s ON s.id = n.series_id ORDER BY s.id`, nil,
 		func(s *InspectedSeries) []any { return []any{&s.ID, &s.digest, &s.samples} }, func(s *InspectedSeries) { out = append(out, *s) })
 	return out, err

@@ -108,7 +108,7 @@ func (t *Tx) remove(ctx context.Context, n *int, from string, args ...any) error
 const (
 	unusedComputations = `SELECT id FROM computation x WHERE NOT EXISTS (SELECT 1 FROM computed k WHERE k.computation_id = x.id)
 		AND NOT EXISTS (SELECT 1 FROM edition_computed k WHERE k.computation_id = x.id) ORDER BY id`
-	unusedSeries = `SELECT id FROM series EXCEPT SELECT series_id FROM component EXCEPT SELECT series_id FROM edition_component ORDER BY 1`
+	unusedSeries = `SELECT id FROM series EXCEPT SELECT series_id FROM component EXCEPT SELECT series_id FROM edition_component EXCEPT SELECT series_id FROM intake_series ORDER BY 1`
 )
 
 // inBatches calls f with the ids that a query gives, so many at a time, each time in a

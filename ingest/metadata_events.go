@@ -86,6 +86,17 @@ func (m *Metadata) addEvents(path string, events []fdsnxml.Event) {
 	m.quakes.ordered = nil
 }
 
+// Tell adds events as Events returned them. Of one that is there already the later version
+// stays.
+func (m *Metadata) Tell(events []CatalogueEvent) {
+	m.ordering.Lock()
+	defer m.ordering.Unlock()
+	for _, e := range events {
+		m.quakes.put(e)
+	}
+	m.quakes.ordered = nil
+}
+
 // saysNoEvents reports whether there are none, nor any that were withdrawn.
 func (m *Metadata) saysNoEvents() bool {
 	m.ordering.Lock()

@@ -15,7 +15,7 @@ import (
 // content: nothing is read again, but what they say of it counts. It warns of what
 // can no longer be changed.
 func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report *FileReport) error {
-	if w.opts.Catalogue == nil && w.opts.Hints.Metadata.IsEmpty() {
+	if w.opts.Catalogue == nil && w.opts.Hints.Metadata.IsEmpty() && len(res.channels) == 0 {
 		return nil
 	}
 	components, err := tx.ComponentsOf(ctx, res.source.SHA256)
@@ -27,11 +27,7 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 		if err := w.describeByMetadata(ctx, tx, held, c, res.source.Path); err != nil {
 			return err
 		}
-		if w.opts.Catalogue == nil {
-			continue
-		}
-		hints := w.opts.Catalogue.Hints(res.rel, ingest.Hints{})
-		stated, matched := w.opts.Catalogue.Apply(res.rel, &c)
+		stated, matched := w.catalogueOf(res, held, &c)
 		if matched {
 			// A code that the catalogue gives may be another earthquake's.
 			if e := held.Record.Event; e == nil || e.OwnCode != c.Event.ID {
@@ -44,9 +40,26 @@ func (w *writer) describeHeld(ctx context.Context, tx *db.Tx, res result, report
 				return err
 			}
 		}
-		report.Warnings = append(report.Warnings, tooLate(hints, held)...)
+		if w.opts.Catalogue != nil {
+			report.Warnings = append(report.Warnings, tooLate(w.opts.Catalogue.Hints(res.rel, ingest.Hints{}), held)...)
+		}
 	}
 	return nil
+}
+
+// catalogueOf is what the catalogue says of a held component of the file, which is c. Of
+// shards it is written down with the file.
+func (w *writer) catalogueOf(res result, held db.HeldComponent, c *ingest.Channel) (stated ingest.Stated, matched bool) {
+	if w.opts.Catalogue != nil {
+		return w.opts.Catalogue.Apply(res.rel, c)
+	}
+	for _, s := range res.channels {
+		if s.channel.Line == held.SourceLine && s.channel.ChannelCode == held.Channel {
+			c.Event, c.Orientation = s.channel.Event, s.channel.Orientation
+			return s.stated, s.matched
+		}
+	}
+	return stated, false
 }
 
 // describeByMetadata stores what metadata state of a held component, which is c. What

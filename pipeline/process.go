@@ -23,6 +23,8 @@ const (
 	Held     Outcome = "held"     // its content is in the store already
 	Skipped  Outcome = "skipped"  // recognised, but no ground acceleration
 	Rejected Outcome = "rejected" // could not be read
+	// Elsewhere is of a file that is left to another shard, or whose channels all are.
+	Elsewhere Outcome = "elsewhere"
 )
 
 // opened is what becomes of an archive, which is no file in the counts.
@@ -38,10 +40,16 @@ type result struct {
 	err      error  // why it was rejected
 	channels []solved
 	refused  ingest.ChannelErrors // why other channels of a file that is read were not
+	// elsewhere counts the channels that are left to other shards.
+	elsewhere int
+	key       db.IntakeKey // its place among what is read
+	intake    *db.Intake   // what is kept for stores to be combined, nil for nothing
 }
 
 // solved is one channel with what was computed of it.
 type solved struct {
+	index    int                    // of the channel in the file
+	record   string                 // what the channels of its record have in common
 	channel  ingest.Channel         // without samples
 	stated   ingest.Stated          // what the catalogue says of it, and nothing else
 	matched  bool                   // whether the catalogue says anything
@@ -62,43 +70,73 @@ type reader struct {
 	hints     ingest.Hints
 	computer  computer
 	isLater   bool // spectra are left to a later stage
+	share     share
 }
 
 func newReader(store Store, opts Options, computer computer) *reader {
-	return &reader{store: store, catalogue: opts.Catalogue, hints: opts.Hints, computer: computer}
+	return &reader{store: store, catalogue: opts.Catalogue, hints: opts.Hints, computer: computer, share: share(opts.Shard)}
 }
 
 // process reads, recognises, describes and solves one file. What is wrong with
 // the file is part of the result; an error is the store's or the context's.
 func (r *reader) process(ctx context.Context, file item) (result, error) {
-	res := result{source: db.Source{Path: file.Path}, rel: file.Rel, stem: file.stem}
+	res := result{source: db.Source{Path: file.Path}, rel: file.Rel, stem: file.stem, key: file.key}
+	res, err := r.make(ctx, file, res)
+	if err == nil && r.share.Count > 0 && res.outcome != opened {
+		res, err = r.keep(res)
+	}
+	return res, errors.Join(err, ctx.Err())
+}
+
+// make makes of the file what can be made of it.
+func (r *reader) make(ctx context.Context, file item, res result) (result, error) {
 	switch {
 	case file.opened:
 		res.outcome = opened
-		return res, ctx.Err()
+		return res, nil
 	case file.skip != "":
-		return res.skipped(file.skip), ctx.Err()
+		return res.skipped(file.skip), nil
 	}
 	data, err := r.read(file, &res)
 	if err != nil {
-		return res.rejected(err), ctx.Err()
+		return res.rejected(err), nil
 	}
 	first, held, err := r.store.Held(ctx, res.source.SHA256)
 	if err != nil {
 		return res, err
 	}
-	if held {
-		return res.held(first), ctx.Err()
+	if held && r.share.Count == 0 {
+		return res.held(first), nil
 	}
 	parsed := res
 	err = survive(func() error {
-		parsed = r.parse(ctx, file.Found, data, res)
+		parsed = r.parse(ctx, file.Found, data, res, held || r.isLater)
 		return nil
 	})
 	if err != nil {
 		parsed = res.rejected(err)
 	}
-	return parsed, ctx.Err()
+	return parsed, nil
+}
+
+// keep leaves to others what is not of the run's share, and writes down the rest. What is
+// said of a file as a whole is said by one.
+func (r *reader) keep(res result) (result, error) {
+	if !r.share.takes(res.rel) {
+		res.refused = nil
+		if res.outcome != Stored {
+			res.outcome, res.err = Elsewhere, nil
+		}
+	}
+	if res.outcome == Stored && len(res.channels)+len(res.refused) == 0 {
+		res.outcome = Elsewhere
+	}
+	if res.outcome == Elsewhere {
+		return res, nil
+	}
+	var err error
+	res.intake, err = intakeOf(res.key, res)
+	return res, err
 }
 
 // read loads the file, unless it was read out of an archive, and completes the
@@ -122,9 +160,10 @@ func (r *reader) read(file item, res *result) ([]byte, error) {
 	return data, nil
 }
 
-// parse reads the channels, applies the catalogue, and solves each channel. A result
-// after the end of the context is none.
-func (r *reader) parse(ctx context.Context, file ingest.Found, data []byte, res result) result {
+// parse reads the channels, applies the catalogue, and solves each channel that is of the
+// run's share, unless its spectra are left to later. A result after the end of the context is
+// none.
+func (r *reader) parse(ctx context.Context, file ingest.Found, data []byte, res result, isLater bool) result {
 	hints := r.hints
 	if r.catalogue != nil {
 		hints = r.catalogue.Hints(file.Rel, hints)
@@ -144,7 +183,11 @@ func (r *reader) parse(ctx context.Context, file ingest.Found, data []byte, res 
 			return res
 		}
 		s := r.tell(file, format, res.stem, &channels[i])
-		if err := r.solve(&s, channels[i]); err != nil {
+		if s.index = i; !r.share.takes(s.record) {
+			res.elsewhere++
+			continue
+		}
+		if err := r.solve(&s, channels[i], isLater); err != nil {
 			res.refused = append(res.refused, &ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
 			continue
 		}
@@ -160,6 +203,7 @@ func (r *reader) tell(file ingest.Found, format, stem string, c *ingest.Channel)
 	header := *c
 	s := solved{accounts: []account{{by: db.ByHeader, source: file.Path, scheme: schemeOf(format, header.Station.Network), channel: withoutSamples(header)}}}
 	s.stated, s.matched = r.describe(file, stem, c)
+	s.record = recordKey(c, file.Rel, stem)
 	accounts, remark, doubt := metadataAccounts(r.hints.Metadata, r.hints.Metadata.Events(), c, len(c.Acceleration))
 	if q := quakeIn(accounts); q != nil && isWithoutEvent(c) {
 		*c, s.quake = header, q
@@ -209,9 +253,9 @@ func (r *reader) describe(file ingest.Found, stem string, c *ingest.Channel) (st
 }
 
 // solve completes s by what is computed of the channel.
-func (r *reader) solve(s *solved, c ingest.Channel) error {
+func (r *reader) solve(s *solved, c ingest.Channel, isLater bool) error {
 	arrival := signal.Arrival(c.Acceleration, c.StepS)
-	if !r.isLater {
+	if !isLater {
 		spectra, err := r.computer.compute(condition.Component{
 			Acceleration: c.Acceleration, StepS: c.StepS, State: string(c.Processing), LowCutHz: numberOrNaN(c.LowCutHz), HighCutHz: numberOrNaN(c.HighCutHz),
 		}, arrival)

@@ -55,6 +55,7 @@ func Reprocess(ctx context.Context, store Store, opts Options, study Study) (Rep
 		return Reprocessed{}, err
 	}
 	p := &reprocessing{study: study, seen: scan(files, opts)}
+	p.settled = p.followFiles
 	run, err := p.begin(ctx, store, opts)
 	if err != nil {
 		return Reprocessed{}, err
@@ -82,6 +83,8 @@ type reprocessing struct {
 	study Study
 	seen  []db.Seen
 	done  Reprocessed
+	// settled notes, with the edition, of what the working state is.
+	settled func(context.Context, *db.Tx) error
 }
 
 // racyNS is how shortly before a run a file may have changed that can change again without
@@ -123,24 +126,27 @@ func scan(files []ingest.Found, opts Options) (out []db.Seen) {
 // where the files have to be read.
 func (p *reprocessing) begin(ctx context.Context, store Store, opts Options) (s state, err error) {
 	err = store.Update(ctx, func(tx *db.Tx) (err error) {
+		if err = claim(ctx, tx, opts.Shard); err != nil {
+			return err
+		}
 		if s.generation, err = regenerate(ctx, tx, opts.Grid, opts.Recipe); err != nil {
 			return err
 		}
 		if s.id, err = tx.StartRun(ctx, "reprocess", opts.Program, opts.Started); err != nil {
 			return err
 		}
-		newest, _, errNewest := tx.NewestEdition(ctx)
-		published, _, errPublished := tx.PublishedEdition(ctx)
-		if err := errors.Join(errNewest, errPublished); err != nil {
+		if err := p.noteEditions(ctx, tx); err != nil {
 			return err
 		}
-		p.done.Edition, p.done.Before, p.done.Published = newest.ID, published.ID, published.ID
 		unchanged, err := p.isUnchanged(ctx, tx)
 		if err != nil || unchanged {
 			return err
 		}
 		p.done.IsRead = true
-		return errors.Join(tx.ClearWorking(ctx), tx.Follow(ctx, p.followed(false)))
+		if opts.Shard.Count > 0 {
+			err = tx.ClearIntake(ctx)
+		}
+		return errors.Join(err, tx.ClearWorking(ctx), tx.Follow(ctx, p.followed(false)))
 	})
 	if err != nil {
 		return s, err
@@ -151,6 +157,14 @@ func (p *reprocessing) begin(ctx context.Context, store Store, opts Options) (s 
 	}
 	s.reader = newReader(store, opts, computer)
 	return s, nil
+}
+
+// noteEditions notes what there is as the run begins.
+func (p *reprocessing) noteEditions(ctx context.Context, tx *db.Tx) error {
+	newest, _, errNewest := tx.NewestEdition(ctx)
+	published, _, errPublished := tx.PublishedEdition(ctx)
+	p.done.Edition, p.done.Before, p.done.Published = newest.ID, published.ID, published.ID
+	return errors.Join(errNewest, errPublished)
 }
 
 func (p *reprocessing) followed(whole bool) db.Followed {
@@ -177,6 +191,9 @@ func (p *reprocessing) read(ctx context.Context) error {
 		return nil
 	}
 	p.source.readMetadata(ctx, p.opts.Hints.Metadata)
+	if err := p.store.Update(ctx, func(tx *db.Tx) error { return keepEvents(ctx, tx, p.opts) }); err != nil {
+		return err
+	}
 	return p.files(ctx)
 }
 
@@ -211,8 +228,7 @@ func (p *reprocessing) put(ctx context.Context) (newest db.Edition, err error) {
 			return err
 		}
 		if p.done.IsRead {
-			p.distrust()
-			err = errors.Join(tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
+			err = p.settled(ctx, tx)
 		}
 		var errNewest error
 		newest, _, errNewest = tx.NewestEdition(ctx)
@@ -222,6 +238,12 @@ func (p *reprocessing) put(ctx context.Context) (newest db.Edition, err error) {
 		p.done.Edition = newest.ID
 	}
 	return newest, err
+}
+
+// followFiles notes that the working state is that of the files.
+func (p *reprocessing) followFiles(ctx context.Context, tx *db.Tx) error {
+	p.distrust()
+	return errors.Join(tx.Follow(ctx, p.followed(true)), tx.SetSeen(ctx, p.seen))
 }
 
 // distrust has the next run look into the files that could not be read: who may read them,

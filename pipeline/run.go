@@ -43,7 +43,10 @@ type Options struct {
 	Recipe *condition.Recipe
 	// Takes says of a file or member by its path below the path that was named, and of an
 	// archive, whether it is read; nil for all.
-	Takes   func(rel string, isArchive bool) bool
+	Takes func(rel string, isArchive bool) bool
+	// Shard is the part of the records that the run takes, in a store that is for that; the
+	// zero value takes all.
+	Shard   db.Shard
 	Workers int       // files in work at the same time; default GOMAXPROCS
 	Program string    // name and version, kept with the run
 	Started time.Time // when the run began
@@ -54,6 +57,8 @@ type Options struct {
 	Progress func(Progress)
 	// SkipRotation leaves the last stage to a later run.
 	SkipRotation bool
+	// Gathered is called as shards are taken over; may be nil.
+	Gathered func(GatherProgress)
 	// Recomputed is called by the writer after each held component of the second stage;
 	// may be nil.
 	Recomputed func(Recomputed)
@@ -118,6 +123,9 @@ func withDefaults(opts Options) Options {
 	if opts.Progress == nil {
 		opts.Progress = func(Progress) {}
 	}
+	if opts.Gathered == nil {
+		opts.Gathered = func(GatherProgress) {}
+	}
 	if opts.Recomputed == nil {
 		opts.Recomputed = func(Recomputed) {}
 	}
@@ -142,7 +150,7 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	var s state
 	err := store.Update(ctx, func(tx *db.Tx) error {
 		var err error
-		if err = refuseFollowed(ctx, tx); err != nil {
+		if err = errors.Join(refuseFollowed(ctx, tx), claim(ctx, tx, opts.Shard)); err != nil {
 			return err
 		}
 		if s.generation, err = settleGeneration(ctx, tx, opts.Grid, opts.Recipe); err != nil {
@@ -151,8 +159,10 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 		if err = shareWithdrawn(ctx, tx, opts.Hints.Metadata); err != nil {
 			return err
 		}
-		s.id, err = tx.StartRun(ctx, "ingest", opts.Program, opts.Started)
-		return err
+		if s.id, err = tx.StartRun(ctx, "ingest", opts.Program, opts.Started); err != nil {
+			return err
+		}
+		return keepEvents(ctx, tx, opts)
 	})
 	if err != nil {
 		return state{}, err

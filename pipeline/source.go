@@ -12,6 +12,7 @@ import (
 	"sync/atomic"
 	"time"
 
+	"swaybook/db"
 	"swaybook/ingest"
 	"swaybook/ingest/archive"
 )
@@ -45,8 +46,9 @@ func newSource(files []ingest.Found, opts Options) *source {
 // item is a file for a worker to read, or a member of an archive.
 type item struct {
 	ingest.Found
-	stem     string // base name without extension
-	skip     string // why it need not be read
+	key      db.IntakeKey // its place among what is read
+	stem     string       // base name without extension
+	skip     string       // why it need not be read
 	isMember bool
 	data     []byte // of a member
 	modified time.Time
@@ -71,7 +73,7 @@ func (s *source) file(ctx context.Context, f ingest.Found, yield func(item) bool
 	// The store itself must not even be opened: closing a file ends the locks that
 	// the process has on it.
 	done := s.decided[absolute(f.Path)]
-	it := item{Found: f, stem: stemOf(f.Path), skip: cmp.Or(done.reason, ingest.SkipByName(baseOf(f.Path)))}
+	it := item{Found: f, key: db.IntakeKey{Path: f.Path}, stem: stemOf(f.Path), skip: cmp.Or(done.reason, ingest.SkipByName(baseOf(f.Path)))}
 	if done.err != nil {
 		it.Err = done.err
 	}
@@ -140,17 +142,20 @@ func (s *source) members(ctx context.Context, a *openedArchive, yield func(item)
 	if !yield(item{Found: a.found, opened: true}) {
 		return false
 	}
-	more := int64(0)
+	more, n := int64(0), 0
 	for m, err := range a.members(ctx, ingest.SkipMember) {
 		if ctx.Err() != nil {
 			return false
 		}
+		n++
 		if m.Name != "" && err == nil && !s.takes(archive.Join(a.found.Rel, m.Name), false) {
 			continue
 		}
 		s.total.Add(more)
 		more = 1
-		if !yield(s.memberItem(a, m, err)) {
+		it := s.memberItem(a, m, err)
+		it.key = db.IntakeKey{Path: a.found.Path, Member: n}
+		if !yield(it) {
 			return false
 		}
 	}

@@ -32,6 +32,7 @@ type Summary struct {
 	Held        int `json:"held"`         // files whose content was in the store already
 	Skipped     int `json:"skipped"`      // files that are no ground acceleration
 	Rejected    int `json:"rejected"`     // files that could not be read, or stored
+	Elsewhere   int `json:"elsewhere"`    // files of which other shards have all
 	Channels    int `json:"rejected_channels"`
 	Records     int `json:"records"` // new records
 	Rotated     int `json:"rotated"` // records
@@ -73,6 +74,9 @@ func (s *Summary) add(f FileReport) {
 		s.Skipped++
 	case Rejected:
 		s.Rejected++
+	case Elsewhere:
+		s.Elsewhere++
+		s.Channels += len(f.Causes)
 	}
 }
 

@@ -7,7 +7,6 @@ import (
 	"syscall"
 
 	"swaybook/db"
-	"swaybook/ingest"
 	"swaybook/ingest/archive"
 )
 
@@ -20,11 +19,12 @@ type writer struct {
 	source  *source
 	done    int
 	summary Summary
-	settler *settler                // of the batch in hand
-	known   map[db.Statement]string // what settlers know to be stated
-	isWhole bool                    // nothing is published of a run that does not come to its end
-	doubts  []recordDoubt           // kept to the end: another file may state what one does not
-	unread  []string                // files and members that the system did not let be read
+	settler *settler                                      // of the batch in hand
+	known   map[db.Statement]string                       // what settlers know to be stated
+	reached func(context.Context, *db.Tx, []result) error // notes that a batch is stored, nil for nothing
+	isWhole bool                                          // nothing is published of a run that does not come to its end
+	doubts  []recordDoubt                                 // kept to the end: another file may state what one does not
+	unread  []string                                      // files and members that the system did not let be read
 }
 
 func newWriter(store Store, run state, opts Options, src *source) *writer {
@@ -58,7 +58,10 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 			}
 			reports = append(reports, report)
 		}
-		return w.settler.settle(ctx)
+		if err := w.settler.settle(ctx); err != nil || w.reached == nil {
+			return err
+		}
+		return w.reached(ctx, tx, batch)
 	})
 	if err != nil {
 		w.doubts = w.doubts[:doubts]
@@ -73,6 +76,9 @@ func (w *writer) storeBatch(ctx context.Context, batch []result) error {
 }
 
 func (w *writer) storeFile(ctx context.Context, tx *db.Tx, res result) (FileReport, error) {
+	if err := w.keepIntake(ctx, tx, res); err != nil {
+		return FileReport{}, err
+	}
 	var err error
 	if res, err = w.recheck(ctx, tx, res); err != nil {
 		return FileReport{}, err
@@ -166,7 +172,11 @@ func (w *writer) storeChannels(ctx context.Context, tx *db.Tx, res result, repor
 		}
 		report.Warnings = append(report.Warnings, s.channel.Warnings...)
 	}
-	if report.Components == 0 {
+	switch {
+	case report.Components > 0:
+	case res.elsewhere > 0:
+		report.Outcome = Elsewhere
+	default:
 		report.Outcome = Rejected
 	}
 	return report, nil
@@ -217,10 +227,8 @@ func (w *writer) reject(ctx context.Context, tx *db.Tx, res result, report FileR
 	if _, isOfSystem := errors.AsType[syscall.Errno](cause); isOfSystem {
 		w.unread = append(w.unread, res.source.Path)
 	}
-	r := db.Rejection{Path: res.source.Path, Line: line, Cause: cause.Error(), SHA256: res.source.SHA256}
-	if pe, ok := errors.AsType[*ingest.ParseError](cause); ok {
-		r.Line, r.Cause = pe.Line, pe.Cause()
-	}
+	said := causeOf(line, cause)
+	r := db.Rejection{Path: res.source.Path, Line: said.Line, Cause: said.Text, SHA256: res.source.SHA256}
 	if c := (Cause{Line: r.Line, Text: r.Cause}); !slices.Contains(report.Causes, c) {
 		report.Causes = append(report.Causes, c)
 	}

@@ -37,6 +37,7 @@ func ingestCommand() *cli.Command {
 			&cli.StringFlag{Name: "recipe", Usage: "what is done to components before their spectra: standard, as-delivered, or a TOML `FILE`; without PATH of what is held only (default: the store's, of a new one standard)"},
 			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files in work at the same time"},
 			rotationFlag(),
+			shardFlag(),
 			&cli.BoolFlag{Name: "json", DisableDefaultText: true, Usage: "print the summary as JSON"},
 		},
 		Action: func(c *cli.Context) error {
@@ -77,6 +78,11 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	o.pipeline.Paths = c.Args().Slice()
 	o.pipeline.Workers = c.Int("workers")
 	o.pipeline.SkipRotation = !c.Bool("rotation")
+	if c.IsSet("shard") {
+		if o.pipeline.Shard, err = parseShard(c.String("shard"), os.Getenv); err != nil {
+			return o, usagef("--shard %w", err)
+		}
+	}
 	if err := checkWorkers(c); err != nil {
 		return o, err
 	}

@@ -119,6 +119,9 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	p.printf("  files already held                      %7d\n", r.Held)
 	p.printf("  files skipped: no ground acceleration   %7d\n", r.Skipped)
 	p.printf("  files rejected                          %7d\n", r.Rejected)
+	if r.Elsewhere > 0 {
+		p.printf("  files of other shards                   %7d\n", r.Elsewhere)
+	}
 	if r.Channels > 0 {
 		p.printf("  channels rejected from files stored     %7d\n", r.Channels)
 	}

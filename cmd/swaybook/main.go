@@ -121,6 +121,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		DisableSliceFlagSeparator: true,
 		Commands: []*cli.Command{
 			ingestCommand(),
+			combineCommand(),
 			queryCommand(),
 			exportCommand(),
 			reportCommand(),

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"fmt"
 	"io"
 	"log/slog"
 	"os"
@@ -95,6 +96,20 @@ func isTerminal(w io.Writer) bool {
 func (m *monitor) file(p pipeline.Progress) {
 	m.note(p.File)
 	m.show("ingesting", "files", p.Done, p.Total)
+}
+
+// gathered takes note of a batch of a shard that was taken over.
+func (m *monitor) gathered(g pipeline.GatherProgress) {
+	stage := fmt.Sprintf("taking over %d/%d", g.Part, g.Parts)
+	m.enter(stage)
+	m.show(stage, "files and results", g.Done, g.Total)
+}
+
+// placed takes note of one file of a shard that has its place.
+func (m *monitor) placed(p pipeline.Progress) {
+	m.note(p.File)
+	m.enter("placing")
+	m.show("placing", "files", p.Done, p.Total)
 }
 
 // component takes note of one held component computed anew.

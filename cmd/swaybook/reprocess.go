@@ -31,6 +31,8 @@ func reprocessCommand() *cli.Command {
 			&cli.BoolFlag{Name: "rehash", DisableDefaultText: true, Usage: "read all files again, whatever their sizes and times say"},
 			&cli.StringFlag{Name: "max-drift", Usage: "hold results back that differ from the published ones by more than this `RATIO`, such as 5% (default: the study's)"},
 			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files in work at the same time"},
+			shardFlag(),
+			&cli.IntFlag{Name: "combine", DefaultText: "none", Usage: "take the files' records from the `N` stores that --shard 1/N to N/N filled"},
 			asJSONFlag("plan, or what became of the run,"),
 		},
 		Action: func(c *cli.Context) error {
@@ -55,6 +57,13 @@ func reprocessCommand() *cli.Command {
 				return plan.print(c.App.Writer, o.json)
 			}
 			plan.ingest.pipeline.Workers = c.Int("workers")
+			if o.shard.Count > 0 {
+				return runStudyShard(c.Context, plan, o, c.App.Writer)
+			}
+			plan.ownShards(o.combine)
+			if o.combine > 0 {
+				plan.ingest.pipeline.Catalogue = nil // what it says came with the shards
+			}
 			return runReprocess(c.Context, plan, o, c.App.Writer)
 		},
 	}
@@ -68,6 +77,18 @@ func newReprocessOptions(c *cli.Context) (o reprocessOptions, err error) {
 			err = usagef("--max-drift %q: %w", c.String("max-drift"), errBound)
 		}
 		o.maxDrift = &bound
+	}
+	if c.IsSet("shard") {
+		var errShard error
+		if o.shard, errShard = parseShard(c.String("shard"), os.Getenv); errShard != nil {
+			err = errors.Join(err, usagef("--shard %w", errShard))
+		}
+	}
+	if o.combine = c.Int("combine"); c.IsSet("combine") && (o.combine < 1 || o.combine > maxShards) {
+		err = errors.Join(err, usagef("--combine %d: want 1 to %d", o.combine, maxShards))
+	}
+	if c.IsSet("shard") && c.IsSet("combine") {
+		err = errors.Join(err, usagef("--shard fills one of the stores that --combine takes: give one of the two"))
 	}
 	return o, errors.Join(err, checkWorkers(c))
 }

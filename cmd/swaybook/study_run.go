@@ -15,6 +15,8 @@ import (
 type reprocessOptions struct {
 	rehash, json bool
 	maxDrift     *float64 // instead of the study's
+	shard        db.Shard // the part to fill, the zero value for the store itself
+	combine      int      // how many shards to combine instead of reading files, 0 for none
 }
 
 // studyRun carries out a plan.
@@ -74,9 +76,7 @@ func (r *studyRun) run(ctx context.Context) (err error) {
 	if r.outputs, before, err = newOutputs(ctx, r.store); err != nil {
 		return err
 	}
-	done, err := pipeline.Reprocess(ctx, r.store, opts, pipeline.Study{
-		Name: r.plan.study.Name.Value, File: r.plan.study.Path(), Decided: r.plan.decided, Rehash: r.options.rehash, Approve: r.approve,
-	})
+	done, err := r.make(ctx, opts)
 	r.note(done, err == nil)
 	if err == nil {
 		if err := r.outputs.set.Close(); err != nil { // nothing is to be undone any more

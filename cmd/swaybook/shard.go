@@ -1,0 +1,107 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"strconv"
+	"strings"
+
+	"github.com/urfave/cli/v2"
+
+	"swaybook/db"
+)
+
+func shardFlag() cli.Flag {
+	return &cli.StringFlag{Name: "shard", Usage: "take the records of part `I/N` only, I from 1 to N, into a store of its own; " +
+		"auto, or auto/N, takes I from the task of a Slurm array or of an indexed Kubernetes job"}
+}
+
+// maxShards is more than any archive needs, and than Slurm's arrays have.
+const maxShards = 1_000_000
+
+// The variables by which schedulers tell a task which it is. That of the count is ours, since
+// Kubernetes tells none.
+const (
+	slurmTask     = "SLURM_ARRAY_TASK_ID"
+	slurmCount    = "SLURM_ARRAY_TASK_COUNT"
+	slurmFirst    = "SLURM_ARRAY_TASK_MIN"
+	jobIndex      = "JOB_COMPLETION_INDEX"
+	countVariable = "SWAYBOOK_SHARDS"
+)
+
+// parseShard reads a part of an archive; getenv gives what the environment says.
+func parseShard(text string, getenv func(string) string) (db.Shard, error) {
+	number, count, hasCount := strings.Cut(text, "/")
+	s := db.Shard{}
+	var err error
+	if hasCount {
+		if s.Count, err = wholeNumber(count); err != nil {
+			return s, fmt.Errorf("%s: count: %w", text, err)
+		}
+	}
+	switch {
+	case number == "auto":
+		s, err = taskShard(s.Count, getenv)
+	case !hasCount:
+		err = errors.New("want I/N, auto or auto/N")
+	default:
+		s.Number, err = wholeNumber(number)
+	}
+	switch {
+	case err != nil:
+		return s, fmt.Errorf("%s: %w", text, err)
+	case s.Count < 1 || s.Count > maxShards:
+		return s, fmt.Errorf("%s: want a count of 1 to %d", text, maxShards)
+	case s.Number < 1 || s.Number > s.Count:
+		return s, fmt.Errorf("%s: parts are numbered from 1 to their count, found %d of %d", text, s.Number, s.Count)
+	}
+	return s, nil
+}
+
+func wholeNumber(text string) (int, error) {
+	n, err := strconv.Atoi(text)
+	if err != nil {
+		return 0, fmt.Errorf("%q is no whole number", text)
+	}
+	return n, nil
+}
+
+// taskShard is the part that a scheduler gives this task, of so many, or 0 where the
+// scheduler has to say.
+func taskShard(count int, getenv func(string) string) (db.Shard, error) {
+	switch {
+	case getenv(slurmTask) != "":
+		return slurmShard(count, getenv)
+	case getenv(jobIndex) != "":
+		index, err := wholeNumber(getenv(jobIndex))
+		if err == nil && count == 0 {
+			if count, err = wholeNumber(getenv(countVariable)); err != nil {
+				err = fmt.Errorf("of how many %s is one no variable says: say auto/N, or set %s", jobIndex, countVariable)
+			}
+		}
+		return db.Shard{Number: index + 1, Count: count}, err
+	}
+	return db.Shard{}, fmt.Errorf("neither %s nor %s is set: this is no task of an array", slurmTask, jobIndex)
+}
+
+// slurmShard is the part of a task of an array 1-N, or 0-(N-1) where the whole array is at
+// work. Where some tasks of one are submitted again, Slurm counts these only, so the count
+// has to be said.
+func slurmShard(count int, getenv func(string) string) (s db.Shard, err error) {
+	task, err := wholeNumber(getenv(slurmTask))
+	if err != nil || count != 0 {
+		return db.Shard{Number: task, Count: count}, err
+	}
+	if s.Count, err = wholeNumber(getenv(slurmCount)); err != nil {
+		return s, fmt.Errorf("%s: %w", slurmCount, err)
+	}
+	first, err := wholeNumber(getenv(slurmFirst))
+	if err != nil {
+		return s, fmt.Errorf("%s: %w", slurmFirst, err)
+	}
+	s.Number = task - first + 1
+	if first > 1 || s.Number > s.Count {
+		return s, fmt.Errorf("task %d looks like one of a few that were submitted again: say auto/N", task)
+	}
+	return s, nil
+}

@@ -1,0 +1,53 @@
+package main
+
+import (
+	"strings"
+	"testing"
+
+	"swaybook/db"
+)
+
+// TestParseShard reads parts as they are written, and as schedulers tell tasks which they
+// are: SLURM_ARRAY_TASK_ID, _COUNT and _MIN of Slurm's manual of sbatch, JOB_COMPLETION_INDEX
+// from 0 of the Kubernetes documentation on indexed jobs.
+func TestParseShard(t *testing.T) {
+	slurm := func(id, count, first string) map[string]string {
+		return map[string]string{slurmTask: id, slurmCount: count, slurmFirst: first}
+	}
+	for _, c := range []struct {
+		text  string
+		env   map[string]string
+		want  db.Shard
+		wrong string
+	}{
+		{text: "1/4", want: db.Shard{Number: 1, Count: 4}},
+		{text: "4/4", want: db.Shard{Number: 4, Count: 4}},
+		{text: "0/4", wrong: "from 1"},
+		{text: "5/4", wrong: "from 1"},
+		{text: "1/0", wrong: "count of 1"},
+		{text: "1", wrong: "want I/N"},
+		{text: "a/4", wrong: "no whole number"},
+		{text: "1/b", wrong: "no whole number"},
+		{text: "1/4/4", wrong: "no whole number"},
+		{text: "auto", wrong: "no task of an array"},
+		{text: "auto", env: slurm("1", "4", "1"), want: db.Shard{Number: 1, Count: 4}},
+		{text: "auto", env: slurm("4", "4", "1"), want: db.Shard{Number: 4, Count: 4}},
+		{text: "auto", env: slurm("0", "4", "0"), want: db.Shard{Number: 1, Count: 4}},
+		{text: "auto", env: slurm("3", "1", "3"), wrong: "submitted again"},
+		{text: "auto", env: slurm("4", "2", "1"), wrong: "submitted again"},
+		{text: "auto/4", env: slurm("3", "1", "3"), want: db.Shard{Number: 3, Count: 4}},
+		{text: "auto/4", env: slurm("0", "4", "0"), wrong: "from 1"},
+		{text: "auto/4", env: map[string]string{jobIndex: "0"}, want: db.Shard{Number: 1, Count: 4}},
+		{text: "auto/4", env: map[string]string{jobIndex: "4"}, wrong: "from 1"},
+		{text: "auto", env: map[string]string{jobIndex: "2", countVariable: "3"}, want: db.Shard{Number: 3, Count: 3}},
+		{text: "auto", env: map[string]string{jobIndex: "2"}, wrong: "auto/N"},
+	} {
+		got, err := parseShard(c.text, func(name string) string { return c.env[name] })
+		switch {
+		case c.wrong == "" && (err != nil || got != c.want):
+			t.Errorf("%s in %v: %v, %v, want %v", c.text, c.env, got, err, c.want)
+		case c.wrong != "" && (err == nil || !strings.Contains(err.Error(), c.wrong)):
+			t.Errorf("%s in %v: %v, %v, want an error with %q", c.text, c.env, got, err, c.wrong)
+		}
+	}
+}

@@ -1,0 +1,98 @@
+package main
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"path/filepath"
+	"strings"
+
+	"swaybook/db"
+	"swaybook/pipeline"
+)
+
+// shardStore is where a study's shard has its store: beside the study's own.
+func shardStore(store string, s db.Shard) string {
+	ext := filepath.Ext(store)
+	return fmt.Sprintf("%s.shard-%d-of-%d%s", strings.TrimSuffix(store, ext), s.Number, s.Count, ext)
+}
+
+// ownShards are the stores of a study's shards, which are no records.
+func (p *studyPlan) ownShards(count int) {
+	for i := range count {
+		for name, what := range db.Files(shardStore(p.study.Store.Value, db.Shard{Number: i + 1, Count: count})) {
+			p.ingest.pipeline.Own[name] = what
+		}
+	}
+}
+
+// runStudyShard makes a shard's store that of its part of the study's files as they are. The
+// study's questions are left to the run that combines the shards.
+func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) (err error) {
+	ingest := plan.ingest
+	ingest.store = shardStore(plan.study.Store.Value, o.shard)
+	ingest.pipeline.Shard, ingest.pipeline.Takes = o.shard, plan.study.Takes
+	plan.ownShards(o.shard.Count)
+	lock, err := db.TakeLock(ctx, ingest.store, holder(ingest.pipeline.Started))
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, lock.Release()) }()
+	store, err := db.Create(ctx, ingest.store, db.AnySolver)
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, store.Close()) }()
+	done, err := pipeline.Reprocess(ctx, store, ingest.pipeline, plan.followed(o, approveAll))
+	ingest.monitor.end()
+	switch {
+	case err != nil && ctx.Err() != nil:
+		return interruption(done.Summary)
+	case err != nil:
+		return err
+	}
+	return printStudyShard(w, o, newIngestReport(ingest, done.Summary, true), done)
+}
+
+// followed is what the pipeline is told of the study.
+func (p *studyPlan) followed(o reprocessOptions, approve func(context.Context, int64, int64) (bool, error)) pipeline.Study {
+	return pipeline.Study{Name: p.study.Name.Value, File: p.study.Path(), Decided: p.decided, Rehash: o.rehash, Approve: approve}
+}
+
+func printStudyShard(w io.Writer, o reprocessOptions, report ingestReport, done pipeline.Reprocessed) error {
+	var err error
+	if done.IsRead || o.json {
+		err = report.print(w, o.json)
+	} else {
+		_, err = fmt.Fprintf(w, "%s: no file has changed since the last run.\n", report.Store)
+	}
+	switch {
+	case err != nil:
+		return err
+	case done.Damaged > 0:
+		return fmt.Errorf("%s is damaged (records: %d)", report.Store, done.Damaged)
+	case !done.Complete():
+		return errRejected
+	}
+	return nil
+}
+
+// make makes the study's store that of its files, or of its shards.
+func (r *studyRun) make(ctx context.Context, opts pipeline.Options) (done pipeline.Reprocessed, err error) {
+	study := r.plan.followed(r.options, r.approve)
+	if r.options.combine == 0 {
+		return pipeline.Reprocess(ctx, r.store, opts, study)
+	}
+	var paths []string
+	for i := range r.options.combine {
+		paths = append(paths, shardStore(r.plan.study.Store.Value, db.Shard{Number: i + 1, Count: r.options.combine}))
+	}
+	parts, err := openParts(ctx, paths)
+	if err != nil {
+		return done, err
+	}
+	defer func() { err = errors.Join(err, closeParts(parts)) }()
+	combined, err := pipeline.Combine(ctx, r.store, parts, combineWith(opts, r.plan.ingest.monitor), study)
+	return combined.Reprocessed, err
+}

@@ -1,0 +1,209 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+)
+
+// Gathered counts what came from a shard.
+type Gathered struct {
+	Files        int // of which reading made something new, or something else
+	Gone         int // of which there is nothing any more
+	Computations int // that came
+	Damaged      int // that are not what was stored, and stayed
+}
+
+// Add adds what came from another.
+func (g *Gathered) Add(more Gathered) {
+	g.Files += more.Files
+	g.Gone += more.Gone
+	g.Computations += more.Computations
+	g.Damaged += more.Damaged
+}
+
+// gatherBatch is how many files, or computations, come in one transaction.
+const gatherBatch = 64
+
+// gathering takes over a shard.
+type gathering struct {
+	store *Store
+	part  *Part
+	// generation is of the store that takes.
+	generation int64
+	done       Gathered
+	tell       func(done, total int)
+	steps      int
+	total      int
+}
+
+// Gather makes what the store has of a shard that which the shard has: what reading made of
+// its files, their samples, and what was computed of its generation, which is the store's of
+// this number. What is there is left alone, so that a store that was stopped in the middle
+// goes on. tell is told after each batch how far it is. What is damaged is told by its
+// checksums: of samples that is an error, a computation is left behind.
+func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, tell func(done, total int)) (Gathered, error) {
+	g := &gathering{store: s, part: part, generation: generationID, tell: tell}
+	err := g.count(ctx)
+	for _, step := range []func(context.Context) error{g.events, g.files, g.gone, g.computations} {
+		if err == nil {
+			err = step(ctx)
+		}
+	}
+	if err != nil {
+		err = fmt.Errorf("take over %s: %w", part.Shard, explain(err))
+	}
+	return g.done, err
+}
+
+func (g *gathering) count(ctx context.Context) error {
+	return g.part.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM intake WHERE shard = ?) + (SELECT count(*) FROM computation WHERE generation_id = ?)`,
+		g.part.Number, g.part.Generation.ID).Scan(&g.total)
+}
+
+// update is one batch of so many files or computations.
+func (g *gathering) update(ctx context.Context, n int, f func(*Tx) error) error {
+	if err := ctx.Err(); err != nil {
+		return err
+	}
+	if err := g.store.Update(context.WithoutCancel(ctx), f); err != nil {
+		return err
+	}
+	g.steps += n
+	g.tell(g.steps, g.total)
+	return nil
+}
+
+func (t *Tx) noteChange(ctx context.Context) error {
+	return t.SetRebuild(ctx, Rebuild{State: RebuildChanged, Reached: BeforeIntake})
+}
+
+// events takes over what documents said of earthquakes.
+func (g *gathering) events(ctx context.Context) error {
+	var s sealedSaying
+	err := g.part.tx.QueryRowContext(ctx, `SELECT said, sha256 FROM intake_events WHERE shard = ?`, g.part.Number).Scan(&s.said, &s.sum)
+	if errors.Is(err, sql.ErrNoRows) {
+		return nil
+	}
+	if err != nil {
+		return err
+	}
+	if _, err := s.open(); err != nil {
+		return g.part.damaged("events of documents", err)
+	}
+	return g.update(ctx, 0, func(t *Tx) error {
+		same, err := t.idOf(ctx, `SELECT count(*) FROM intake_events WHERE shard = ? AND sha256 = ?`, g.part.Number, s.sum)
+		if err != nil || same > 0 {
+			return err
+		}
+		err = t.exec(ctx, `INSERT OR REPLACE INTO intake_events (shard, said, sha256) VALUES (?, ?, ?)`, g.part.Number, s.said, s.sum)
+		return errors.Join(err, t.noteChange(ctx))
+	})
+}
+
+// intakeRow is what a store keeps of a file, without what was said.
+type intakeRow struct {
+	id  int64
+	key IntakeKey
+	sum []byte
+}
+
+// intakeRows lists what a store keeps of files of a shard behind key.
+func intakeRows(ctx context.Context, q queryer, shard int, key IntakeKey) ([]intakeRow, error) {
+	rows, err := q.QueryContext(ctx, `SELECT id, path, member, sha256 FROM intake WHERE shard = ? AND (path, member) > (?, ?) ORDER BY path, member LIMIT ?`,
+		shard, key.Path, key.Member, gatherBatch)
+	if err != nil {
+		return nil, err
+	}
+	return collect(rows, func(r *intakeRow) []any { return []any{&r.id, &r.key.Path, &r.key.Member, &r.sum} })
+}
+
+// files takes over what reading made of files, and their samples.
+func (g *gathering) files(ctx context.Context) error {
+	for key := BeforeIntake; ; {
+		rows, err := intakeRows(ctx, g.part.tx, g.part.Number, key)
+		if err != nil || len(rows) == 0 {
+			return err
+		}
+		err = g.update(ctx, len(rows), func(t *Tx) error {
+			for _, row := range rows {
+				same, err := t.idOf(ctx, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ? AND sha256 = ?`, row.key.Path, row.key.Member, g.part.Number, row.sum)
+				if err == nil && same == 0 {
+					err = g.file(ctx, t, row)
+				}
+				if err != nil {
+					return err
+				}
+			}
+			return nil
+		})
+		if err != nil {
+			return err
+		}
+		key = rows[len(rows)-1].key
+	}
+}
+
+func (g *gathering) file(ctx context.Context, t *Tx, row intakeRow) error {
+	in := Intake{IntakeKey: row.key}
+	s := sealedSaying{sum: row.sum}
+	if err := g.part.tx.QueryRowContext(ctx, `SELECT said FROM intake WHERE id = ?`, row.id).Scan(&s.said); err != nil {
+		return err
+	}
+	var err error
+	if in.Said, err = s.open(); err != nil {
+		return g.part.damaged("intake of "+row.key.Path, err)
+	}
+	rows, err := g.part.tx.QueryContext(ctx, `SELECT i.channel, i.samples, s.sha256, s.data FROM intake_series i JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
+	if err != nil {
+		return err
+	}
+	in.Series, err = collect(rows, func(s *IntakeSeries) []any { return []any{&s.Channel, &s.Samples, &s.Digest, &s.Data} })
+	if err != nil {
+		return err
+	}
+	for _, s := range in.Series {
+		if _, err := DecodeSamples(s.Data, s.Samples, s.Digest); err != nil {
+			return g.part.damaged("samples of "+row.key.Path, err)
+		}
+	}
+	g.done.Files++
+	return errors.Join(t.PutIntake(ctx, g.part.Number, in), t.noteChange(ctx))
+}
+
+// gone forgets what the shard does not have any more.
+func (g *gathering) gone(ctx context.Context) error {
+	for key := BeforeIntake; ; {
+		rows, err := intakeRows(ctx, g.store.read, g.part.Number, key)
+		if err != nil || len(rows) == 0 {
+			return err
+		}
+		var gone []IntakeKey
+		for _, row := range rows {
+			held, err := idOf(ctx, g.part.tx, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ?`, row.key.Path, row.key.Member, g.part.Number)
+			if err != nil {
+				return err
+			}
+			if held == 0 {
+				gone = append(gone, row.key)
+			}
+		}
+		key = rows[len(rows)-1].key
+		if len(gone) == 0 {
+			continue
+		}
+		g.done.Gone += len(gone)
+		err = g.update(ctx, 0, func(t *Tx) error {
+			for _, key := range gone {
+				if err := t.ForgetIntake(ctx, g.part.Number, key); err != nil {
+					return err
+				}
+			}
+			return t.noteChange(ctx)
+		})
+		if err != nil {
+			return err
+		}
+	}
+}

@@ -1,0 +1,99 @@
+package pipeline
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/binary"
+	"encoding/json"
+	"fmt"
+	"path"
+	"time"
+
+	"swaybook/db"
+	"swaybook/ingest"
+)
+
+// share is which part of the records a run takes; the zero value takes all.
+type share db.Shard
+
+// takes reports whether what has this key is of the share. A key is of one share of so many,
+// whatever else there is.
+func (s share) takes(key string) bool {
+	if s.Count == 0 {
+		return true
+	}
+	sum := sha256.Sum256([]byte(key))
+	return binary.BigEndian.Uint64(sum[:])%uint64(s.Count) == uint64(s.Number-1)
+}
+
+// recordKey is what the channels of a record have in common by what is said of them alone,
+// so that every run can tell without the store. Of one without an earthquake it is the
+// station, since channels start seconds apart, and which earthquake it was others may say
+// tomorrow. Files without identity go by what their names, or folders, have in common.
+func recordKey(c *ingest.Channel, rel, stem string) string {
+	station := ingest.StationCode(c)
+	switch {
+	case station != "" && isWithoutEvent(c):
+		return station
+	case station != "":
+		return station + " " + ingest.EventCode(c)
+	}
+	base, o := ingest.SplitStem(stem)
+	if base == stem && o.Axis != ingest.AxisUnknown {
+		base = ""
+	}
+	return path.Join(folderOf(rel), base)
+}
+
+// claim makes the store that of a shard, or refuses it to a run that takes all records.
+func claim(ctx context.Context, tx *db.Tx, shard db.Shard) error {
+	if shard.Count > 0 {
+		return tx.SetShard(ctx, shard)
+	}
+	held, ok, err := tx.Shard(ctx)
+	switch {
+	case err != nil || !ok:
+		return err
+	case held.IsCombined():
+		return fmt.Errorf("the store is %s: ingest into these and combine them again, or name another store with --store", held)
+	}
+	return fmt.Errorf("the store is %s: say --shard %d/%d, or name another store with --store", held, held.Number, held.Count)
+}
+
+// saidEvents are what documents said of earthquakes, as it is kept for stores to be combined.
+type saidEvents struct {
+	Events    []ingest.CatalogueEvent
+	Withdrawn map[string]time.Time
+}
+
+// keepEvents keeps what documents say of earthquakes, in a shard.
+func keepEvents(ctx context.Context, tx *db.Tx, opts Options) error {
+	if opts.Shard.Count == 0 {
+		return nil
+	}
+	said, err := json.Marshal(saidEvents{opts.Hints.Metadata.Events(), opts.Hints.Metadata.Withdrawn()})
+	if err != nil {
+		return fmt.Errorf("write down events: %w", err)
+	}
+	return tx.PutIntakeEvents(ctx, opts.Shard.Number, said)
+}
+
+// eventsOf are the events that documents said of when shards were read.
+func eventsOf(ctx context.Context, tx *db.Tx) (*ingest.Metadata, error) {
+	kept, err := tx.IntakeEvents(ctx)
+	if err != nil {
+		return nil, err
+	}
+	m := &ingest.Metadata{}
+	for _, text := range kept {
+		var said saidEvents
+		if err := json.Unmarshal(text, &said); err != nil {
+			return nil, fmt.Errorf("read events: %w", err)
+		}
+		m.Tell(said.Events)
+		for id, at := range said.Withdrawn {
+			m.Withdraw(id, at)
+		}
+	}
+	return m, nil
+}
