@@ -9,9 +9,10 @@ import (
 
 // arrange lets flags stand anywhere: it moves the program's flags before the
 // command and a command's flags before its arguments, where the cli library
-// looks for them. After "--" everything is an argument.
+// looks for them. After "--" everything is an argument. Who asks for help gets that on
+// the command, whatever its arguments are, in which the library would look for another.
 func arrange(app *cli.App, args []string) ([]string, error) {
-	var global, command, own, rest []string
+	var global, command, own, help, rest []string
 	commands := app.Commands
 	flags := app.Flags
 	for i := 1; i < len(args); i++ {
@@ -37,12 +38,21 @@ func arrange(app *cli.App, args []string) ([]string, error) {
 			i++
 			words = args[i-1 : i+1]
 		}
-		if has(app.Flags, arg) {
+		switch {
+		case has(app.Flags, arg):
 			global = append(global, words...)
-		} else {
+		case has([]cli.Flag{cli.HelpFlag}, arg):
+			help = words
+		default:
 			own = append(own, words...)
 		}
 	}
+	switch {
+	case help != nil && len(commands) == 0:
+		own, rest = append(own, help...), nil
+	case len(rest) == 0:
+		own = append(own, help...)
+	} // else a word is no command, which is to be said first
 	return slices.Concat(args[:1], global, command, own, rest), nil
 }
 
