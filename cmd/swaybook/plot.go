@@ -81,8 +81,15 @@ func (o *plotOptions) of(a *query.SpectrumAnswer, units query.Units) figure {
 	return figure{a.Chart(units, o.marks, o.axes == axesLinear), chart.Half}
 }
 
-// check looks whether a file may take the place.
+// check looks whether a file may take the place, where there is to be one.
 func (o *plotOptions) check() error {
+	if o.file == "" {
+		return nil
+	}
+	folder := filepath.Dir(o.file)
+	if info, err := os.Stat(folder); err != nil || !info.IsDir() {
+		return ofFlag("plot", usagef("--plot %s: there is no folder %s", o.file, folder))
+	}
 	if info, err := os.Stat(o.file); err == nil && !info.Mode().IsRegular() {
 		return ofFlag("plot", usagef("--plot %s: what is there is no file", o.file))
 	}
