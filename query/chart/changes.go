@@ -43,7 +43,7 @@ const changeRoom vg.Length = 76
 
 // base is what the chart has in common with one of spectra.
 func (s *Changes) base() *Spectra {
-	b := &Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Counts: s.CountsAfter}
+	b := &Spectra{PeriodsS: s.PeriodsS, Counts: s.CountsAfter}
 	for _, p := range s.Pairs {
 		b.Curves = append(b.Curves, Curve{p.Name, p.Kind, p.Before}, Curve{p.Name, p.Kind, p.After})
 	}
@@ -57,11 +57,12 @@ func (s *Changes) Draw(c draw.Canvas) error {
 	if len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	base.heading(c)
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h.write(c)
 	bottom := footRoom + bottomRoom
 	x := newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)
 	upper := frame{x: x, y: newAxis(s.Quantity, lowest, highest, true)}
-	upper.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+changeRoom+2*stripGap, -base.headingRoom())
+	upper.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+changeRoom+2*stripGap, -h.room())
 	lower := frame{x: x, y: s.changeAxis()}
 	lower.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, 0)
 	lower.Max.Y = lower.Min.Y + changeRoom
@@ -72,7 +73,6 @@ func (s *Changes) Draw(c draw.Canvas) error {
 	s.drawChanges(&lower)
 	base.drawCounts(&strip, slices.Max(append([]int{1}, s.CountsBefore...)))
 	s.drawBefore(&strip)
-	base.foot(c)
 	return nil
 }
 

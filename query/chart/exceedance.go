@@ -59,10 +59,9 @@ func (s *Exceedance) Draw(c draw.Canvas) error {
 	if len(shown) == 0 {
 		return ErrNothing
 	}
-	base := Spectra{Title: s.Title, Notes: wrapAll(s.Notes, c), Foot: s.Foot}
-	base.heading(c)
-	base.foot(c)
-	area := draw.Crop(c, leftRoom, -levelRoom, footRoom, -base.headingRoom())
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h.write(c)
+	area := draw.Crop(c, leftRoom, -levelRoom, footRoom, -h.room())
 	height := area.Size().Y / vg.Length(len(shown))
 	for i := range shown {
 		f := frame{Canvas: area, x: shown[i].axis(s.IsLinear), y: linearAxis(s.Share, 100)}

@@ -55,8 +55,9 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	base.heading(c)
-	f := s.layout(c, base)
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h.write(c)
+	f := s.layout(c, base, &h)
 	f.grid()
 	diagonals := s.diagonals(&f)
 	for i := range diagonals {
@@ -81,13 +82,12 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	for i := range s.Readings {
 		s.read(&f, &s.Readings[i], i)
 	}
-	base.foot(c)
 	return nil
 }
 
 // base is what the chart has in common with one of spectra.
 func (s *FourWay) base() *Spectra {
-	return &Spectra{Title: s.Title, Notes: s.Notes, Foot: s.Foot, PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves, Counts: s.Counts}
+	return &Spectra{PeriodsS: s.PeriodsS, Each: s.Each, Curves: s.Curves, Counts: s.Counts}
 }
 
 // mostSpan is the greatest PSV over the least that is shown: more decades leave no room for
@@ -95,7 +95,7 @@ func (s *FourWay) base() *Spectra {
 const mostSpan = 2000
 
 // layout is the frame of the chart. Something is there to be drawn.
-func (s *FourWay) layout(c draw.Canvas, base *Spectra) frame {
+func (s *FourWay) layout(c draw.Canvas, base *Spectra, h *heading) frame {
 	lowest, highest := base.extent()
 	lowest = max(lowest, highest/mostSpan)
 	per := s.Units.PSVInMPS
@@ -105,7 +105,7 @@ func (s *FourWay) layout(c draw.Canvas, base *Spectra) frame {
 	if s.Counts != nil {
 		bottom += stripRoom + stripGap
 	}
-	f.Canvas = equalDecades(draw.Crop(c, leftRoom, -rightRoom, bottom, -base.headingRoom()), &f)
+	f.Canvas = equalDecades(draw.Crop(c, leftRoom, -rightRoom, bottom, -h.room()), &f)
 	return f
 }
 

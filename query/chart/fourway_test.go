@@ -40,7 +40,7 @@ func readBack(f *frame, p vg.Point) (periodS, psv float64) {
 func TestDiagonalsAreTrue(t *testing.T) {
 	s := inventedFourWay()
 	canvas := draw.NewCanvas(vgsvg.New(500, 500), 500, 500)
-	f := s.layout(canvas, s.base())
+	f := s.layout(canvas, s.base(), &heading{})
 	sd, psa := 0, 0
 	for _, d := range s.diagonals(&f) {
 		upper, lower, ok := d.within(&f)

@@ -2,6 +2,7 @@ package chart
 
 import (
 	"fmt"
+	"math"
 
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
@@ -66,13 +67,12 @@ func (s *Record) Draw(c draw.Canvas) error {
 		return ErrNothing
 	}
 	x := spanAxis("time (s) "+s.Clock, s.FromS, s.ToS)
-	base := Spectra{Title: s.Title, Notes: wrapAll(s.Notes, c), Foot: s.Foot}
-	base.heading(c)
-	base.foot(c)
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h.write(c)
 	below := footRoom + bottomRoom + spectraRoom
 	s.drawSpectra(draw.Crop(c, leftRoom, 0, footRoom+bottomRoom, 0))
 	below += 2*pageGap + bottomRoom
-	area := draw.Crop(c, leftRoom, -rightRoom, below, -base.headingRoom())
+	area := draw.Crop(c, leftRoom, -rightRoom, below, -h.room())
 	s.drawBuildUps(draw.Canvas{Canvas: c.Canvas, Rectangle: vg.Rectangle{Min: area.Min, Max: vg.Point{X: area.Max.X, Y: area.Min.Y + buildUpRoom}}}, x)
 	area.Min.Y += buildUpRoom + pageGap
 	height := (area.Size().Y + pageGap) / vg.Length(len(s.Panels))
@@ -150,7 +150,7 @@ func drawSections(c draw.Canvas, sections []Section) {
 		c.FillText(bold(labelSize, ink), vg.Point{X: c.Min.X, Y: y}, section.Title)
 		y -= labelSize + 2
 		for i, line := range section.Lines {
-			for _, words := range wrap(style, line, c.Size().X-4) {
+			for _, words := range wrap(style, line, c.Size().X-4, math.MaxInt) {
 				if y < c.Min.Y-bottomRoom+noteSize {
 					c.FillText(style, vg.Point{X: c.Min.X, Y: y}, fmt.Sprintf("… and %d more", len(section.Lines)-i))
 					return

@@ -137,15 +137,18 @@ func TestAxesOfTraces(t *testing.T) {
 func TestWrap(t *testing.T) {
 	style := writing(10, ink)
 	text := strings.Repeat("one two three ", 20)
-	lines := wrap(style, text, 100)
+	lines := wrap(style, text, 100, 99)
 	if strings.Join(lines, " ") != strings.TrimSpace(text) || len(lines) < 5 {
 		t.Errorf("%q", lines)
 	}
 	if i := slices.IndexFunc(lines, func(l string) bool { return style.Width(l) > 100 }); i >= 0 {
 		t.Errorf("%q is wider than 100", lines[i])
 	}
-	if lines := wrap(style, "a "+strings.Repeat("x", 100), 50); len(lines) != 2 || !strings.HasSuffix(lines[1], "…") || style.Width(lines[1]) > 50 {
+	if lines := wrap(style, "a "+strings.Repeat("x", 100), 50, 2); len(lines) != 2 || !strings.HasSuffix(lines[1], "…") || style.Width(lines[1]) > 50 {
 		t.Errorf("a long word: %q", lines)
+	}
+	if cut := wrap(style, text, 100, 3); len(cut) != 3 || !slices.Equal(cut[:2], lines[:2]) || !strings.HasPrefix(lines[2]+" "+lines[3], strings.TrimSuffix(cut[2], "…")) || !strings.HasSuffix(cut[2], "…") || style.Width(cut[2]) > 100 {
+		t.Errorf("cut to three lines: %q", cut)
 	}
 }
 

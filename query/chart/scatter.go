@@ -38,12 +38,12 @@ const pointRadius, pointCell vg.Length = 2.2, 1
 
 // Draw draws the chart.
 func (s *Scatter) Draw(c draw.Canvas) error {
-	f, ok := s.frame(c)
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	f, ok := s.frame(c, &h)
 	if !ok {
 		return ErrNothing
 	}
-	base := Spectra{Title: s.Title, Notes: wrapAll(s.Notes, c), Foot: s.Foot}
-	base.heading(c)
+	h.write(c)
 	f.grid()
 	order := make([]int, len(s.Groups))
 	for i := range order {
@@ -58,7 +58,6 @@ func (s *Scatter) Draw(c draw.Canvas) error {
 	}
 	s.key(&f)
 	f.axes(true)
-	base.foot(c)
 	return nil
 }
 
@@ -67,7 +66,7 @@ func shapeOf(group int) draw.GlyphStyle {
 }
 
 // frame is that of all points; ok is false where there are none.
-func (s *Scatter) frame(c draw.Canvas) (f frame, ok bool) {
+func (s *Scatter) frame(c draw.Canvas, h *heading) (f frame, ok bool) {
 	lowX, highX, lowY, highY := math.Inf(1), math.Inf(-1), math.Inf(1), math.Inf(-1)
 	for _, g := range s.Groups {
 		for i, x := range g.X {
@@ -79,8 +78,7 @@ func (s *Scatter) frame(c draw.Canvas) (f frame, ok bool) {
 	}
 	// Half a unit of room keeps points off the axes.
 	f = frame{x: newAxis(s.X, lowX, highX, true), y: spanAxis(s.Y, math.Floor(2*lowY-0.5)/2, math.Ceil(2*highY+0.5)/2)}
-	top := (&Spectra{Notes: wrapAll(s.Notes, c)}).headingRoom()
-	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -top)
+	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -h.room())
 	return f, true
 }
 

@@ -46,10 +46,8 @@ type Mark struct {
 // The room of the parts of the chart.
 const (
 	rightRoom vg.Length = 92 // of the curves' names
-	lineRoom  vg.Length = 10
 	stripRoom vg.Length = 34
 	stripGap  vg.Length = 8
-	footRoom  vg.Length = 14
 )
 
 // ErrNothing says that there is nothing to draw.
@@ -60,21 +58,21 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	if _, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	s.heading(c)
-	f, strip := s.layout(c)
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h.write(c)
+	f, strip := s.layout(c, &h)
 	f.grid()
 	s.drawEach(&f)
 	s.drawCurves(&f, &f)
 	s.drawMarks(&f)
 	f.axes(false)
 	s.drawCounts(&strip, 1)
-	s.foot(c)
 	return nil
 }
 
 // layout is the frame of the spectra, and that of the counts below it. Something is there to
 // be drawn.
-func (s *Spectra) layout(c draw.Canvas) (f, strip frame) {
+func (s *Spectra) layout(c draw.Canvas, h *heading) (f, strip frame) {
 	lowest, highest := s.extent()
 	f = frame{
 		x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], !s.IsLinear),
@@ -82,34 +80,10 @@ func (s *Spectra) layout(c draw.Canvas) (f, strip frame) {
 	}
 	strip = f
 	bottom := footRoom + bottomRoom
-	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, -s.headingRoom())
+	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, -h.room())
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
 	strip.Max.Y = strip.Min.Y + stripRoom
 	return f, strip
-}
-
-// foot writes what stands below the chart.
-func (s *Spectra) foot(c draw.Canvas) {
-	style := writing(noteSize, quiet)
-	c.FillText(style, vg.Point{X: c.Min.X + leftRoom, Y: c.Min.Y + footRoom/2}, shorten(style, s.Foot, c.Size().X-leftRoom-4))
-}
-
-// The room of the title, from the top.
-const titleMiddle, titleRoom vg.Length = 11, 24
-
-// headingRoom is the room that the title and notes take.
-func (s *Spectra) headingRoom() vg.Length { return titleRoom + lineRoom*vg.Length(len(s.Notes)) }
-
-// heading writes the title and notes.
-func (s *Spectra) heading(c draw.Canvas) {
-	at := vg.Point{X: c.Min.X + leftRoom, Y: c.Max.Y - titleMiddle}
-	width := c.Size().X - leftRoom - 6
-	c.FillText(bold(titleSize, ink), at, shorten(bold(titleSize, ink), s.Title, width))
-	at.Y = c.Max.Y - titleRoom
-	for _, note := range s.Notes {
-		c.FillText(writing(labelSize, quiet), at, shorten(writing(labelSize, quiet), note, width))
-		at.Y -= lineRoom
-	}
 }
 
 // extent is the least positive and the greatest value of all that is drawn. Of single

@@ -21,7 +21,9 @@ func (s *Spectra) Strips(size Size) []Strip {
 	if lowest, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) || !(lowest > 0) {
 		return nil
 	}
-	f, _ := s.layout(draw.Canvas{Rectangle: vg.Rectangle{Max: vg.Point{X: size.Width, Y: size.Height}}})
+	c := size.canvas()
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	f, _ := s.layout(c, &h)
 	return f.strips(s.PeriodsS, size)
 }
 
@@ -31,8 +33,15 @@ func (s *FourWay) Strips(size Size) []Strip {
 	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return nil
 	}
-	f := s.layout(draw.Canvas{Rectangle: vg.Rectangle{Max: vg.Point{X: size.Width, Y: size.Height}}}, base)
+	c := size.canvas()
+	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	f := s.layout(c, base, &h)
 	return f.strips(s.PeriodsS, size)
+}
+
+// canvas is one on which nothing can be drawn.
+func (s Size) canvas() draw.Canvas {
+	return draw.Canvas{Rectangle: vg.Rectangle{Max: vg.Point{X: s.Width, Y: s.Height}}}
 }
 
 func (f *frame) strips(periodsS []float64, size Size) (out []Strip) {

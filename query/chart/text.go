@@ -57,16 +57,9 @@ func shorten(s draw.TextStyle, words string, width vg.Length) string {
 	return string(runes) + "…"
 }
 
-// wrapAll breaks notes into lines that have room below a chart's title.
-func wrapAll(notes []string, c draw.Canvas) (lines []string) {
-	for _, note := range notes {
-		lines = append(lines, wrap(writing(labelSize, quiet), note, c.Size().X-leftRoom-8)...)
-	}
-	return lines
-}
-
-// wrap breaks a text between words into lines of a width.
-func wrap(s draw.TextStyle, words string, width vg.Length) (lines []string) {
+// wrap breaks a text between words into lines of a width, as many as there may be; what has no
+// room is cut from the last.
+func wrap(s draw.TextStyle, words string, width vg.Length, most int) (lines []string) {
 	line := ""
 	for word := range strings.FieldsSeq(words) {
 		longer := strings.TrimSpace(line + " " + word)
@@ -75,5 +68,9 @@ func wrap(s draw.TextStyle, words string, width vg.Length) (lines []string) {
 		}
 		line = shorten(s, longer, width)
 	}
-	return append(lines, line)
+	if lines = append(lines, line); len(lines) > most {
+		lines[most-1] = shorten(s, strings.Join(lines[most-1:], " "), width)
+		lines = lines[:most]
+	}
+	return lines
 }
