@@ -3,6 +3,7 @@ package chart
 import (
 	"image/color"
 	"math"
+	"slices"
 
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
@@ -103,9 +104,29 @@ func (f *frame) axes(withX bool) {
 // curve draws a curve within the frame only.
 func (f *frame) curve(style draw.LineStyle, xs, ys []float64) {
 	for _, piece := range f.lines(xs, ys) {
-		f.StrokeLines(style, f.ClipLinesXY(piece)...)
+		f.StrokeLines(style, f.ClipLinesXY(f.dash(piece, xs))...)
 	}
 }
+
+// dash is a piece of a curve or, of one point, a short line through it, since a line of one
+// point draws nothing. It keeps away from the points of other values.
+func (f *frame) dash(piece []vg.Point, xs []float64) []vg.Point {
+	if len(piece) != 1 {
+		return piece
+	}
+	at := piece[0]
+	half := dashRoom / 2
+	for _, x := range xs {
+		if apart := vg.Length(math.Abs(float64(f.point(x, f.y.to).X - at.X))); apart > 0 {
+			half = min(half, 0.4*apart)
+		}
+	}
+	half = max(half, hair)
+	return []vg.Point{{X: at.X - half, Y: at.Y}, {X: at.X + half, Y: at.Y}}
+}
+
+// dashRoom is the length of the line that stands for a lone point: one sees its dashes.
+const dashRoom vg.Length = 12
 
 // region fills what lies between two curves, piece by piece.
 func (f *frame) region(fill color.Color, xs, low, high []float64) {
@@ -118,12 +139,13 @@ func (f *frame) region(fill color.Color, xs, low, high []float64) {
 		for !(f.x.has(xs[at]) && f.isShown(both[at])) {
 			at++
 		}
-		var outline []vg.Point
+		var above, below []vg.Point
 		for i := range piece {
-			outline = append(outline, f.point(xs[at+i], high[at+i]))
+			above, below = append(above, f.point(xs[at+i], high[at+i])), append(below, f.point(xs[at+i], low[at+i]))
 		}
-		for i := len(piece) - 1; i >= 0; i-- {
-			outline = append(outline, f.point(xs[at+i], low[at+i]))
+		outline := f.dash(above, xs)
+		for _, p := range slices.Backward(f.dash(below, xs)) {
+			outline = append(outline, p)
 		}
 		f.FillPolygon(fill, f.ClipPolygonXY(outline))
 		at += len(piece)

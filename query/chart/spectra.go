@@ -122,7 +122,7 @@ func (s *Spectra) drawEach(f *frame) {
 	var path vg.Path
 	for _, values := range s.Each {
 		for _, piece := range f.lines(s.PeriodsS, values) {
-			for _, line := range f.ClipLinesXY(simplify(piece, tolerance)) {
+			for _, line := range f.ClipLinesXY(f.dash(simplify(piece, tolerance), s.PeriodsS)) {
 				for _, seen := range c.add(line) {
 					appendLine(&path, seen)
 				}
