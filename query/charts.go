@@ -86,19 +86,33 @@ func (a *SpectrumAnswer) FourWay(units Units, marks []chart.Mark) *chart.FourWay
 		Title: "Four-way spectrum, damping " + percentText(a.Damping), Notes: flat.Notes, Foot: flat.Foot, PeriodsS: a.PeriodsS,
 		Units: chart.FourWayUnits{SD: sd, PSV: psv, SDInM: sdInM, PSVInMPS: psvInMPS}, Each: flat.Each, Curves: flat.Curves, Counts: flat.Counts,
 	}
-	for _, m := range marks {
-		for _, kind := range []chart.Kind{chart.Median, chart.Mean} {
-			i := slices.IndexFunc(flat.Curves, func(curve chart.Curve) bool { return curve.Kind == kind })
-			if i < 0 {
-				continue
-			}
-			if v := readAt(a.PeriodsS, flat.Curves[i].Values, m.FromS); isDefined(v) {
-				c.Readings = append(c.Readings, chart.Reading{Name: m.Name + ", " + flat.Curves[i].Name, PeriodS: m.FromS, PSV: v})
-				break
+	var known []chart.Curve
+	for _, kind := range []chart.Kind{chart.Median, chart.Mean} {
+		for _, curve := range flat.Curves {
+			if curve.Kind == kind {
+				known = append(known, curve)
 			}
 		}
 	}
+	c.Readings = readings(a.PeriodsS, known, marks)
 	return c
+}
+
+// readings are what is read at the ends of marks, on the first of curves that has a value there.
+func readings(periodsS []float64, curves []chart.Curve, marks []chart.Mark) (out []chart.Reading) {
+	for _, m := range marks {
+		for _, t := range slices.Compact([]float64{m.FromS, max(m.FromS, m.ToS)}) {
+			r := chart.Reading{Name: periodName(t), PeriodS: t, PSV: math.NaN()}
+			for _, curve := range curves {
+				if v := readAt(periodsS, curve.Values, t); isDefined(v) {
+					r.Name, r.PSV = r.Name+", "+curve.Name, v
+					break
+				}
+			}
+			out = append(out, r)
+		}
+	}
+	return out
 }
 
 // toPSV makes the ordinates of a chart in SI PSV, in m/s.
@@ -189,5 +203,8 @@ func parseMark(text string) (m chart.Mark, err error) {
 		return chart.Mark{Name: fmt.Sprintf("T = %g to %g s", b.FromS, b.ToS), FromS: b.FromS, ToS: b.ToS}, err
 	}
 	t, err := parseSeconds(text)
-	return chart.Mark{Name: fmt.Sprintf("T = %g s", t), FromS: t, ToS: t}, err
+	return chart.Mark{Name: periodName(t), FromS: t, ToS: t}, err
 }
+
+// periodName is the name of a mark at a period.
+func periodName(t float64) string { return fmt.Sprintf("T = %g s", t) }

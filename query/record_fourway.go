@@ -18,10 +18,6 @@ func (a *RecordAnswer) FourWay(units Units, marks []chart.Mark) *chart.FourWay {
 	}
 	c.Each, c.Curves = a.damped(MeasurePSV, 1)
 	at := max(0, slices.IndexFunc(c.Curves, func(curve chart.Curve) bool { return curve.Kind == chart.UsuallyDamped }))
-	for _, m := range marks {
-		if v := readAt(c.PeriodsS, c.Curves[at].Values, m.FromS); isDefined(v) {
-			c.Readings = append(c.Readings, chart.Reading{Name: m.Name + ", " + c.Curves[at].Name, PeriodS: m.FromS, PSV: v})
-		}
-	}
+	c.Readings = readings(c.PeriodsS, c.Curves[at:min(at+1, len(c.Curves))], marks)
 	return c
 }

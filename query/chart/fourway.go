@@ -3,6 +3,7 @@ package chart
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strconv"
 
 	"gonum.org/v1/plot/vg"
@@ -40,7 +41,7 @@ type FourWayUnits struct {
 type Reading struct {
 	Name    string
 	PeriodS float64
-	PSV     float64 // m/s
+	PSV     float64 // m/s, NaN where nothing can be read
 }
 
 // Values are the three values at a point: SD in m, PSV in m/s, PSA in g.
@@ -55,9 +56,8 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h, f := s.layout(c, base)
 	h.write(c)
-	f := s.layout(c, base, &h)
 	f.grid()
 	diagonals := s.diagonals(&f)
 	for i := range diagonals {
@@ -67,8 +67,9 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	for i := range diagonals {
 		diagonals[i].write(&f)
 	}
+	read := s.readOn(&f)
 	names := f
-	if n := len(s.Readings); n > 0 {
+	if n := len(read); n > 0 {
 		names.Min.Y += lineRoom * vg.Length(4*n+1)
 	}
 	base.drawCurves(&f, &names)
@@ -79,8 +80,8 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 		strip.Min.Y = strip.Max.Y - stripRoom
 		base.drawCounts(&strip, 1)
 	}
-	for i := range s.Readings {
-		s.read(&f, &s.Readings[i], i)
+	for i, r := range read {
+		s.read(&f, r, i)
 	}
 	return nil
 }
@@ -94,19 +95,46 @@ func (s *FourWay) base() *Spectra {
 // the others.
 const mostSpan = 2000
 
-// layout is the frame of the chart. Something is there to be drawn.
-func (s *FourWay) layout(c draw.Canvas, base *Spectra, h *heading) frame {
+// layout is the heading and the frame of the chart. Something is there to be drawn.
+func (s *FourWay) layout(c draw.Canvas, base *Spectra) (h heading, f frame) {
 	lowest, highest := base.extent()
 	lowest = max(lowest, highest/mostSpan)
 	per := s.Units.PSVInMPS
-	f := frame{x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)}
+	f = frame{x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)}
 	f.y = inUnit(newAxis("PSV ("+s.Units.PSV+")", lowest/per, highest/per, true), per)
+	h = newHeading(c, s.Title, append(slices.Clone(s.Notes), s.unread(&f)...), s.Foot)
 	bottom := footRoom + bottomRoom
 	if s.Counts != nil {
 		bottom += stripRoom + stripGap
 	}
 	f.Canvas = equalDecades(draw.Crop(c, leftRoom, -rightRoom, bottom, -h.room()), &f)
-	return f
+	return h, f
+}
+
+// isOn reports whether a reading lies in a frame.
+func (r *Reading) isOn(f *frame) bool {
+	return f.x.has(r.PeriodS) && f.isShown(r.PSV) && f.y.has(r.PSV)
+}
+
+// readOn are the readings that lie in a frame.
+func (s *FourWay) readOn(f *frame) (out []*Reading) {
+	for i := range s.Readings {
+		if s.Readings[i].isOn(f) {
+			out = append(out, &s.Readings[i])
+		}
+	}
+	return out
+}
+
+// unread is a note on the other ones.
+func (s *FourWay) unread(f *frame) []string {
+	var names []string
+	for i := range s.Readings {
+		if !s.Readings[i].isOn(f) {
+			names = append(names, s.Readings[i].Name)
+		}
+	}
+	return notShown(names)
 }
 
 // inUnit is an axis of values in SI whose ticks are round in a unit.
@@ -216,9 +244,6 @@ func (f *frame) behind(at, along vg.Point, length vg.Length) {
 // read marks a point, with the lines on which its three values are read, and writes these,
 // each reading above the one before.
 func (s *FourWay) read(f *frame, r *Reading, nth int) {
-	if !f.x.has(r.PeriodS) || !f.y.has(r.PSV) {
-		return
-	}
 	sd, psv, psa := r.Values()
 	at := f.point(r.PeriodS, r.PSV)
 	line := draw.LineStyle{Color: mark, Width: 0.8, Dashes: []vg.Length{3, 2}}

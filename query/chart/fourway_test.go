@@ -40,7 +40,7 @@ func readBack(f *frame, p vg.Point) (periodS, psv float64) {
 func TestDiagonalsAreTrue(t *testing.T) {
 	s := inventedFourWay()
 	canvas := draw.NewCanvas(vgsvg.New(500, 500), 500, 500)
-	f := s.layout(canvas, s.base(), &heading{})
+	_, f := s.layout(canvas, s.base())
 	sd, psa := 0, 0
 	for _, d := range s.diagonals(&f) {
 		upper, lower, ok := d.within(&f)
@@ -78,15 +78,15 @@ func TestReadings(t *testing.T) {
 		t.Errorf("SD %v m, PSV %v m/s, PSA %v g", sd, psv, psa)
 	}
 	s := inventedFourWay()
-	s.Readings = []Reading{{"T = 1 s", 1, 0.02}, {"outside", 99, 0.02}}
+	s.Readings = []Reading{{"T = 1 s", 1, 0.02}, {"outside", 99, 0.02}, {"below", 1, 1e-9}, {"unknown", 2, math.NaN()}}
 	words := string(written(t, SVG, s))
 	for _, want := range []string{"\nSD 0.318 cm\n", "\nPSV 2 cm/s\n", "\nPSA 0.0128 g\n", "\n0.1 g\n", "\n1 cm\n"} {
 		if !strings.Contains(words, want) {
 			t.Errorf("%q is not written", want)
 		}
 	}
-	if strings.Contains(words, "outside") {
-		t.Error("a reading outside the chart is written")
+	if !strings.Contains(words, "<desc>not marked, as nothing is drawn there: outside, below, unknown\n") || strings.Count(words, "\nPSV ") != 2 { // with the axis
+		t.Error("readings that cannot be drawn are not told apart")
 	}
 }
 

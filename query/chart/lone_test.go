@@ -49,9 +49,7 @@ func TestLonePointsAreDrawn(t *testing.T) {
 		"gaps": {PeriodsS: []float64{1, 1.01, 2, 3, 4}, Counts: []int{1, 0, 1, 0, 1}, Each: [][]float64{{2, nan, 2, nan, 2}},
 			Curves: []Curve{{"mean", Mean, []float64{2, nan, 2, nan, 2}}}, Band: Region{[]float64{2.5, nan, 2.5, nan, 2.5}, []float64{4, nan, 4, nan, 4}}},
 	} {
-		c := Half.canvas()
-		h := newHeading(c, "", nil, "")
-		f, _ := s.layout(c, &h)
+		_, f, _ := s.layout(Half.canvas())
 		svg := string(written(t, SVG, s))
 		for what, in := range map[string]struct {
 			colour    string

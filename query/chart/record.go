@@ -3,6 +3,7 @@ package chart
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
@@ -67,7 +68,11 @@ func (s *Record) Draw(c draw.Canvas) error {
 		return ErrNothing
 	}
 	x := spanAxis("time (s) "+s.Clock, s.FromS, s.ToS)
-	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	notes := s.Notes
+	if periods := s.Spectra.axis(); periods != nil {
+		notes = append(slices.Clone(notes), outside(s.Spectra.Marks, periods)...)
+	}
+	h := newHeading(c, s.Title, notes, s.Foot)
 	h.write(c)
 	below := footRoom + bottomRoom + spectraRoom
 	s.drawSpectra(draw.Crop(c, leftRoom, 0, footRoom+bottomRoom, 0))
@@ -120,6 +125,15 @@ func (s *Record) drawBuildUps(c draw.Canvas, x axis) {
 	f.axes(true)
 }
 
+// axis is that of the periods, nil of none.
+func (s *RecordSpectra) axis() *axis {
+	if len(s.PeriodsS) == 0 {
+		return nil
+	}
+	a := newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], true)
+	return &a
+}
+
 // drawSpectra draws the spectra and, beside them, the sections.
 func (s *Record) drawSpectra(c draw.Canvas) {
 	c.Max.Y = c.Min.Y + spectraRoom
@@ -134,7 +148,7 @@ func (s *Record) drawSpectra(c draw.Canvas) {
 	}
 	c.FillText(bold(labelSize, ink), vg.Point{X: c.Min.X, Y: c.Max.Y - labelSize/2}, s.Spectra.Title)
 	c.Max.Y -= labelSize + 6
-	f := frame{Canvas: c, x: newAxis("period (s)", base.PeriodsS[0], base.PeriodsS[len(base.PeriodsS)-1], true), y: newAxis(s.Spectra.Quantity, lowest, highest, true)}
+	f := frame{Canvas: c, x: *s.Spectra.axis(), y: newAxis(s.Spectra.Quantity, lowest, highest, true)}
 	f.grid()
 	base.drawEach(&f)
 	base.drawCurves(&f, &f)

@@ -5,6 +5,7 @@ import (
 	"math"
 	"slices"
 	"strconv"
+	"strings"
 
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
@@ -58,9 +59,8 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	if _, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return ErrNothing
 	}
-	h := newHeading(c, s.Title, s.Notes, s.Foot)
+	h, f, strip := s.layout(c)
 	h.write(c)
-	f, strip := s.layout(c, &h)
 	f.grid()
 	s.drawEach(&f)
 	s.drawCurves(&f, &f)
@@ -70,20 +70,21 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	return nil
 }
 
-// layout is the frame of the spectra, and that of the counts below it. Something is there to
-// be drawn.
-func (s *Spectra) layout(c draw.Canvas, h *heading) (f, strip frame) {
+// layout is the heading, the frame of the spectra, and that of the counts below it. Something is
+// there to be drawn.
+func (s *Spectra) layout(c draw.Canvas) (h heading, f, strip frame) {
 	lowest, highest := s.extent()
 	f = frame{
 		x: newAxis("period (s)", s.PeriodsS[0], s.PeriodsS[len(s.PeriodsS)-1], !s.IsLinear),
 		y: newAxis(s.Quantity, lowest, highest, !s.IsLinear),
 	}
+	h = newHeading(c, s.Title, append(slices.Clone(s.Notes), outside(s.Marks, &f.x)...), s.Foot)
 	strip = f
 	bottom := footRoom + bottomRoom
 	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, -h.room())
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
 	strip.Max.Y = strip.Min.Y + stripRoom
-	return f, strip
+	return h, f, strip
 }
 
 // extent is the least positive and the greatest value of all that is drawn. Of single
@@ -170,12 +171,37 @@ func (f *frame) end(xs, ys []float64) int {
 	return -1
 }
 
+// on is the part of a mark that an axis has, if any.
+func (m *Mark) on(x *axis) (fromS, toS float64, ok bool) {
+	fromS, toS = max(m.FromS, x.from), min(max(m.FromS, m.ToS), x.to)
+	return fromS, toS, fromS <= toS
+}
+
+// outside is a note on the marks that an axis has no part of.
+func outside(marks []Mark, x *axis) []string {
+	var names []string
+	for _, m := range marks {
+		if _, _, ok := m.on(x); !ok {
+			names = append(names, m.Name)
+		}
+	}
+	return notShown(names)
+}
+
+// notShown is a note on what was asked for and cannot be marked, none of nothing.
+func notShown(names []string) []string {
+	if names == nil {
+		return nil
+	}
+	return []string{"not marked, as nothing is drawn there: " + strings.Join(names, ", ")}
+}
+
 // drawMarks marks periods, with their names along the line.
 func (s *Spectra) drawMarks(f *frame) {
 	line := draw.LineStyle{Color: mark, Width: 0.9}
 	for _, m := range s.Marks {
-		from, to := max(m.FromS, f.x.from), min(max(m.FromS, m.ToS), f.x.to)
-		if !f.x.has(from) || !f.x.has(to) {
+		from, to, ok := m.on(&f.x)
+		if !ok {
 			continue
 		}
 		for _, t := range slices.Compact([]float64{from, to}) {

@@ -21,9 +21,7 @@ func (s *Spectra) Strips(size Size) []Strip {
 	if lowest, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) || !(lowest > 0) {
 		return nil
 	}
-	c := size.canvas()
-	h := newHeading(c, s.Title, s.Notes, s.Foot)
-	f, _ := s.layout(c, &h)
+	_, f, _ := s.layout(size.canvas())
 	return f.strips(s.PeriodsS, size)
 }
 
@@ -33,9 +31,7 @@ func (s *FourWay) Strips(size Size) []Strip {
 	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
 		return nil
 	}
-	c := size.canvas()
-	h := newHeading(c, s.Title, s.Notes, s.Foot)
-	f := s.layout(c, base, &h)
+	_, f := s.layout(size.canvas(), base)
 	return f.strips(s.PeriodsS, size)
 }
 
