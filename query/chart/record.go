@@ -58,6 +58,7 @@ const (
 	buildUpRoom vg.Length = 62
 	spectraRoom vg.Length = 176
 	pageGap     vg.Length = 7
+	spectraGap  vg.Length = 74 // for the names of curves
 	// sectionsShare is the part of the width that sections take beside spectra.
 	sectionsShare = 0.38
 )
@@ -140,8 +141,8 @@ func (s *Record) drawSpectra(c draw.Canvas) {
 	sections := c
 	sections.Min.X = c.Max.X - (c.Size().X+leftRoom)*sectionsShare
 	drawSections(sections, s.Sections)
-	c.Max.X = sections.Min.X - 74
-	base := Spectra{PeriodsS: s.Spectra.PeriodsS, Each: s.Spectra.Whole, Curves: s.Spectra.Curves, Marks: s.Spectra.Marks}
+	c.Max.X = sections.Min.X - spectraGap
+	base := Spectra{PeriodsS: s.Spectra.PeriodsS, Each: s.Spectra.Whole, Curves: s.Spectra.Curves}
 	lowest, highest := base.extent()
 	if !(highest > 0) {
 		return
@@ -149,10 +150,11 @@ func (s *Record) drawSpectra(c draw.Canvas) {
 	c.FillText(bold(labelSize, ink), vg.Point{X: c.Min.X, Y: c.Max.Y - labelSize/2}, s.Spectra.Title)
 	c.Max.Y -= labelSize + 6
 	f := frame{Canvas: c, x: *s.Spectra.axis(), y: newAxis(s.Spectra.Quantity, lowest, highest, true)}
+	f.Max.Y -= f.flagRoom(s.Spectra.Marks)
 	f.grid()
 	base.drawEach(&f)
 	base.drawCurves(&f, &f)
-	base.drawMarks(&f)
+	f.drawMarks(s.Spectra.Marks, spectraGap-flagGap)
 	f.axes(true)
 }
 

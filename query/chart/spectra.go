@@ -5,7 +5,6 @@ import (
 	"math"
 	"slices"
 	"strconv"
-	"strings"
 
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
@@ -38,12 +37,6 @@ type Curve struct {
 	Values []float64
 }
 
-// Mark is a period or, where ToS is greater, a band of them.
-type Mark struct {
-	Name       string
-	FromS, ToS float64
-}
-
 // The room of the parts of the chart.
 const (
 	rightRoom vg.Length = 92 // of the curves' names
@@ -64,7 +57,7 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	f.grid()
 	s.drawEach(&f)
 	s.drawCurves(&f, &f)
-	s.drawMarks(&f)
+	f.drawMarks(s.Marks, rightRoom-flagGap)
 	f.axes(false)
 	s.drawCounts(&strip, 1)
 	return nil
@@ -82,6 +75,7 @@ func (s *Spectra) layout(c draw.Canvas) (h heading, f, strip frame) {
 	strip = f
 	bottom := footRoom + bottomRoom
 	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom+stripRoom+stripGap, -h.room())
+	f.Max.Y -= f.flagRoom(s.Marks)
 	strip.Canvas = draw.Crop(c, leftRoom, -rightRoom, bottom, 0)
 	strip.Max.Y = strip.Min.Y + stripRoom
 	return h, f, strip
@@ -169,52 +163,6 @@ func (f *frame) end(xs, ys []float64) int {
 		}
 	}
 	return -1
-}
-
-// on is the part of a mark that an axis has, if any.
-func (m *Mark) on(x *axis) (fromS, toS float64, ok bool) {
-	fromS, toS = max(m.FromS, x.from), min(max(m.FromS, m.ToS), x.to)
-	return fromS, toS, fromS <= toS
-}
-
-// outside is a note on the marks that an axis has no part of.
-func outside(marks []Mark, x *axis) []string {
-	var names []string
-	for _, m := range marks {
-		if _, _, ok := m.on(x); !ok {
-			names = append(names, m.Name)
-		}
-	}
-	return notShown(names)
-}
-
-// notShown is a note on what was asked for and cannot be marked, none of nothing.
-func notShown(names []string) []string {
-	if names == nil {
-		return nil
-	}
-	return []string{"not marked, as nothing is drawn there: " + strings.Join(names, ", ")}
-}
-
-// drawMarks marks periods, with their names along the line.
-func (s *Spectra) drawMarks(f *frame) {
-	line := draw.LineStyle{Color: mark, Width: 0.9}
-	for _, m := range s.Marks {
-		from, to, ok := m.on(&f.x)
-		if !ok {
-			continue
-		}
-		for _, t := range slices.Compact([]float64{from, to}) {
-			x := f.point(t, f.y.from).X
-			f.StrokeLine2(line, x, f.Min.Y, x, f.Max.Y)
-		}
-		style := upwards(writing(labelSize, mark))
-		style.XAlign = draw.XRight
-		at := vg.Point{X: f.point(from, f.y.from).X - 6, Y: f.Max.Y - 3}
-		half, length := vg.Length(labelSize)*0.6, style.Width(m.Name)
-		f.FillPolygon(paper, []vg.Point{{X: at.X - half, Y: at.Y}, {X: at.X + half, Y: at.Y}, {X: at.X + half, Y: at.Y - length}, {X: at.X - half, Y: at.Y - length}})
-		f.FillText(style, at, m.Name)
-	}
 }
 
 // drawCounts draws how many spectra count at each period, on an axis that reaches up to a
