@@ -125,7 +125,7 @@ func TestPNG(t *testing.T) {
 			seen[color.NRGBAModel.Convert(img.At(x, y)).(color.NRGBA)] = true
 		}
 	}
-	for _, c := range []color.NRGBA{{0xff, 0xff, 0xff, 0xff}, ink, deep, faint, shade} {
+	for _, c := range []color.NRGBA{{0xff, 0xff, 0xff, 0xff}, ink, deep, dim, shade} {
 		if !seen[c] {
 			t.Errorf("no dot is %v", c)
 		}

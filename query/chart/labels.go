@@ -29,7 +29,7 @@ func drawLabels(f *frame, room vg.Length, labels []label) {
 	for i, y := range spread(wanted, labelStep, f.Min.Y, f.Max.Y) {
 		l := labels[i]
 		at := vg.Point{X: f.Max.X + 22, Y: y}
-		f.StrokeLine2(draw.LineStyle{Color: rule, Width: 0.5}, l.from.X, l.from.Y, f.Max.X+4, y)
+		f.StrokeLine2(draw.LineStyle{Color: dim, Width: 0.4}, l.from.X, l.from.Y, f.Max.X+4, y)
 		f.StrokeLine2(l.style, f.Max.X+5, y, at.X-3, y)
 		style := writing(labelSize, l.style.Color)
 		f.FillText(style, at, shorten(style, l.words, room-24))

@@ -54,7 +54,7 @@ func TestLonePointsAreDrawn(t *testing.T) {
 		for what, in := range map[string]struct {
 			colour    string
 			low, high float64
-		}{"the single spectrum": {hex(faint), 2, 2}, "the mean": {hex(warm), 2, 2}, "the band": {"#09467D", 2.5, 4}} { // veil, as SVG has it
+		}{"the single spectrum": {hex(dim), 2, 2}, "the mean": {hex(warm), 2, 2}, "the band": {"#09467D", 2.5, 4}} { // veil, as SVG has it
 			for i, period := range s.PeriodsS {
 				low, high := f.point(period, in.low), f.point(period, in.high)
 				found := 0

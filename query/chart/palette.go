@@ -14,11 +14,12 @@ var (
 	paper   = color.NRGBA{0xff, 0xff, 0xff, 0xd8} // behind words that lie on curves
 	quiet   = color.NRGBA{0x5a, 0x63, 0x70, 0xff} // notes
 	rule    = color.NRGBA{0xe2, 0xe5, 0xe9, 0xff} // lines of the grid
-	faint   = color.NRGBA{0xc3, 0xc9, 0xd1, 0xff} // single spectra
+	faint   = color.NRGBA{0xc3, 0xc9, 0xd1, 0xff} // single spectra, of which there are many
+	dim     = color.NRGBA{0x86, 0x8e, 0x99, 0xff} // few of them, lines from curves to their names
 	shade   = color.NRGBA{0xd6, 0xe4, 0xf0, 0xff} // counts
 	veil    = color.NRGBA{0x0a, 0x47, 0x7e, 0x30} // between percentiles, over single spectra
 	deep    = color.NRGBA{0x0a, 0x47, 0x7e, 0xff} // percentiles
-	warm    = color.NRGBA{0xc2, 0x57, 0x0c, 0xff} // mean
+	warm    = color.NRGBA{0x9c, 0x5d, 0x00, 0xff} // mean
 	plum    = color.NRGBA{0x96, 0x3c, 0xd8, 0xff} // envelope
 	mark    = color.NRGBA{0x9b, 0x1c, 0x31, 0xff} // structure
 	tone    = color.NRGBA{0x0b, 0x6b, 0x4f, 0xff} // one record
@@ -68,3 +69,15 @@ var styles = map[Kind]draw.LineStyle{
 
 // hair is the width of single spectra.
 const hair vg.Length = 0.5
+
+// few is how many single spectra a reader may want to follow one by one. More are a background
+// to their statistics, and darken it by themselves where they lie close.
+const few = 10
+
+// single is the colour of n single spectra.
+func single(n int) color.NRGBA {
+	if n <= few {
+		return dim
+	}
+	return faint
+}

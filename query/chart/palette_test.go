@@ -78,13 +78,44 @@ func TestColoursAreApart(t *testing.T) {
 	}
 }
 
-// Words have a contrast of 4.5 to the paper at least (WCAG 2.1, success criterion 1.4.3).
-func TestWordsCanBeRead(t *testing.T) {
-	for name, c := range map[string]color.NRGBA{"ink": ink, "quiet": quiet, "deep": deep, "warm": warm, "plum": plum, "mark": mark, "tone": tone} {
+// contrast is that of a colour to another one that lies under it, on white (WCAG 2.1, "contrast
+// ratio").
+func contrast(c, under color.NRGBA) float64 {
+	luminance := func(c color.NRGBA) float64 {
 		rgb := linear(c)
-		luminance := 0.2126*rgb[0] + 0.7152*rgb[1] + 0.0722*rgb[2]
-		if contrast := 1.05 / (luminance + 0.05); contrast < 4.5 {
-			t.Errorf("%s has a contrast of %.2f", name, contrast)
+		return 0.2126*rgb[0] + 0.7152*rgb[1] + 0.0722*rgb[2]
+	}
+	return (luminance(under) + 0.05) / (luminance(c) + 0.05)
+}
+
+// Words have a contrast of 4.5 to the paper at least (WCAG 2.1, success criterion 1.4.3), curves
+// of statistics too, with a margin, and of 3 to the band, as few single spectra have to the paper
+// (criterion 1.4.11).
+func TestContrast(t *testing.T) {
+	white := color.NRGBA{0xff, 0xff, 0xff, 0xff}
+	over := func(x uint8) uint8 { return uint8((int(x)*int(veil.A) + 0xff*(0xff-int(veil.A))) / 0xff) }
+	band := color.NRGBA{over(veil.R), over(veil.G), over(veil.B), 0xff}
+	for name, c := range map[string]color.NRGBA{"ink": ink, "quiet": quiet, "mark": mark, "tone": tone} {
+		if x := contrast(c, white); x < 4.5 {
+			t.Errorf("%s has a contrast of %.2f", name, x)
 		}
+	}
+	for _, kind := range []Kind{Median, Percentile, Mean, Envelope, Design} {
+		c := color.NRGBAModel.Convert(styles[kind].Color).(color.NRGBA)
+		if x, y := contrast(c, white), contrast(c, band); x < 5 || y < 3 {
+			t.Errorf("%v has a contrast of %.2f, of %.2f over the band", c, x, y)
+		}
+	}
+	if x := contrast(single(few), white); x < 3.2 {
+		t.Errorf("few single spectra have a contrast of %.2f", x)
+	}
+	for n, want := range map[int]color.NRGBA{few: dim, few + 1: faint} {
+		svg := string(written(t, SVG, invented(n)))
+		if longest := drawnIn(t, svg, hex(want)); len(longest) < n {
+			t.Errorf("%d single spectra: %d lines are drawn in %v", n, len(longest), want)
+		}
+	}
+	if len(drawnIn(t, string(written(t, SVG, invented(few))), hex(faint))) > 0 {
+		t.Error("few single spectra are faint")
 	}
 }

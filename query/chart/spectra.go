@@ -113,7 +113,7 @@ const strokePoints = 300
 // the band over them.
 func (s *Spectra) drawEach(f *frame) {
 	c := newCover(f.Rectangle, hair)
-	f.SetLineStyle(draw.LineStyle{Color: faint, Width: hair})
+	f.SetLineStyle(draw.LineStyle{Color: single(len(s.Each)), Width: hair})
 	var path vg.Path
 	for _, values := range s.Each {
 		for _, piece := range f.lines(s.PeriodsS, values) {
