@@ -185,21 +185,25 @@ func (a *RecordAnswer) damped(m Measure, per float64) (whole [][]float64, curves
 		s := &f.Spectra[i]
 		all, usable := f.ordinates(s, m, per)
 		whole = append(whole, all)
-		curves = append(curves, chart.Curve{Name: percentText(s.Damping) + " damped", Kind: dampingKind(s.Damping), Values: usable})
+		curves = append(curves, chart.Curve{Name: percentText(s.Damping) + " damped", Kind: f.dampingKind(s.Damping), Values: usable})
 	}
 	return whole, curves
 }
 
-func dampingKind(ratio float64) chart.Kind {
-	switch {
-	case ratio == 0:
-		return chart.Undamped
-	case ratio < usualDamping:
-		return chart.LightlyDamped
-	case ratio == usualDamping:
+// dampingKind is the line of a damping, by how many of the others are lighter.
+func (f *RecordFigure) dampingKind(ratio float64) chart.Kind {
+	if ratio == usualDamping {
 		return chart.UsuallyDamped
 	}
-	return chart.HeavilyDamped
+	lighter := map[float64]bool{}
+	for _, s := range f.Spectra {
+		lighter[s.Damping] = s.Damping < ratio && s.Damping != usualDamping
+	}
+	n := 0
+	for _, isLighter := range lighter {
+		n += btoi(isLighter)
+	}
+	return chart.OtherDamping(n)
 }
 
 // processingLines say how each role was delivered and what was computed of it.

@@ -154,8 +154,27 @@ func TestRecordFourWay(t *testing.T) {
 	if want := s.SD[1] * 2 * math.Pi / 0.2; len(four.Readings) != 1 || !near(four.Readings[0].PSV, want) || four.Readings[0].Name != "T = 0.2 s, 5% damped" {
 		t.Errorf("read %+v, want %v m/s", four.Readings, want)
 	}
-	if len(four.Curves) != 2 || four.Curves[0].Kind != chart.LightlyDamped || four.Curves[1].Kind != chart.UsuallyDamped {
+	if len(four.Curves) != 2 || four.Curves[0].Kind != chart.OtherDamping(0) || four.Curves[1].Kind != chart.UsuallyDamped {
 		t.Errorf("%d curves", len(four.Curves))
+	}
+}
+
+// Each of eight dampings of any grid has a line of its own, that of 5 % the same in all.
+func TestDampingsAreToldApart(t *testing.T) {
+	f := &RecordFigure{PeriodsS: []float64{1}}
+	for _, ratio := range []float64{0.2, 0, 0.02, 0.05, 0.07, 0.1, 0.005, 0.3} {
+		f.Spectra = append(f.Spectra, RecordSpectrum{"h1", ratio, []float64{1}, []bool{true}})
+	}
+	_, curves := (&RecordAnswer{Figure: f}).damped(MeasurePSV, 1)
+	of := map[chart.Kind]string{}
+	for _, c := range curves {
+		if other := of[c.Kind]; other != "" {
+			t.Errorf("%s and %s have the same line", c.Name, other)
+		}
+		of[c.Kind] = c.Name
+	}
+	if of[chart.UsuallyDamped] != "5% damped" || of[chart.OtherDamping(0)] != "0% damped" || of[chart.OtherDamping(6)] != "30% damped" {
+		t.Errorf("%v", of)
 	}
 }
 

@@ -37,16 +37,21 @@ const (
 	Envelope
 	Design
 	Capacity
-	// Of one record: its directions, and its dampings, of which one is that of most questions.
+	// Of one record: its directions, and its dampings, of which one is that of most questions;
+	// the others are those of OtherDamping.
 	FirstHorizontal
 	SecondHorizontal
 	Vertical
 	AllDirections
-	Undamped
-	LightlyDamped
 	UsuallyDamped
-	HeavilyDamped
+	otherDamping
 )
+
+// OtherDamping is the kind of the nth damping, counted from 0, beside the usual one.
+func OtherDamping(nth int) Kind { return otherDamping + Kind(nth%otherDampings) }
+
+// otherDampings is how many of them look different.
+const otherDampings = 7
 
 // styles are the lines of the kinds.
 var styles = map[Kind]draw.LineStyle{
@@ -61,10 +66,14 @@ var styles = map[Kind]draw.LineStyle{
 	SecondHorizontal: {Color: tone, Width: 1, Dashes: []vg.Length{5, 1.8}},
 	Vertical:         {Color: tone, Width: 1, Dashes: []vg.Length{1.2, 1.8}},
 	AllDirections:    {Color: tone, Width: 2},
-	Undamped:         {Color: tone, Width: 0.8, Dashes: []vg.Length{1.2, 1.8}},
-	LightlyDamped:    {Color: tone, Width: 0.8, Dashes: []vg.Length{5, 1.8}},
 	UsuallyDamped:    {Color: tone, Width: 1.8},
-	HeavilyDamped:    {Color: tone, Width: 0.8},
+	otherDamping + 0: {Color: tone, Width: 0.8, Dashes: []vg.Length{1.2, 1.8}},
+	otherDamping + 1: {Color: tone, Width: 0.8, Dashes: []vg.Length{4.5, 1.6}},
+	otherDamping + 2: {Color: tone, Width: 0.8},
+	otherDamping + 3: {Color: tone, Width: 0.8, Dashes: []vg.Length{7, 1.8, 1.2, 1.8}},
+	otherDamping + 4: {Color: tone, Width: 1.1, Dashes: []vg.Length{11, 2.2}},
+	otherDamping + 5: {Color: tone, Width: 1.1, Dashes: []vg.Length{2.4, 2.4}},
+	otherDamping + 6: {Color: tone, Width: 1.1, Dashes: []vg.Length{7, 1.8, 1.2, 1.8, 1.2, 1.8}},
 }
 
 // hair is the width of single spectra.

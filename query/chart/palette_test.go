@@ -3,6 +3,7 @@ package chart
 import (
 	"image/color"
 	"math"
+	"slices"
 	"testing"
 )
 
@@ -117,5 +118,24 @@ func TestContrast(t *testing.T) {
 	}
 	if len(drawnIn(t, string(written(t, SVG, invented(few))), hex(faint))) > 0 {
 		t.Error("few single spectra are faint")
+	}
+}
+
+// Lines of dampings, all of one colour, differ in their dashes, or in their widths by twice.
+func TestDampingsDiffer(t *testing.T) {
+	kinds := []Kind{UsuallyDamped}
+	for nth := range otherDampings {
+		kinds = append(kinds, OtherDamping(nth))
+	}
+	for i, a := range kinds {
+		for _, b := range kinds[:i] {
+			x, y := styles[a], styles[b]
+			if slices.Equal(x.Dashes, y.Dashes) && max(x.Width, y.Width) < 2*min(x.Width, y.Width) {
+				t.Errorf("kinds %d and %d are %v wide with dashes %v and %v wide with %v", a, b, x.Width, x.Dashes, y.Width, y.Dashes)
+			}
+		}
+		if styles[a].Width == 0 {
+			t.Errorf("kind %d has no line", a)
+		}
 	}
 }
