@@ -67,12 +67,12 @@ func (a *SpectrumAnswer) addCurves(c *chart.Spectra, per float64) {
 	c.Curves = append(c.Curves, chart.Curve{Name: "design", Kind: chart.Design, Values: values})
 }
 
-// percentileName is the name of a percentile in figures.
+// percentileName is the name of a percentile in figures, that of tables but for the median.
 func percentileName(percent float64) (string, chart.Kind) {
 	if percent == 50 {
 		return "median", chart.Median
 	}
-	return percentKey(percent) + " %", chart.Percentile
+	return "p" + percentKey(percent), chart.Percentile
 }
 
 // FourWay is the answer as a four-way chart, with what is read at the marks on the median or,

@@ -129,7 +129,7 @@ func TestDemandChart(t *testing.T) {
 	}
 	x := reductionOf(a.Quantities, "sd_m")
 	want := map[chart.Kind]float64{chart.Median: 0.08 / 0.0254, chart.Mean: 0.08 / 0.0254, chart.Design: x.extra.against.value / 0.0254}
-	names := []string{"capacity 3.937 in, 2 of 7 above", "drift 4% 4.724 in, 1 of 7 above", "median 3.150 in"}
+	names := []string{"capacity 3.937 in, 2 of 7 above", "drift 4% 4.724 in, 1 of 7 above", "median 3.150 in", "p84 4.756 in"}
 	for _, l := range c.Panels[0].Levels {
 		if w, ok := want[l.Kind]; ok && !near(l.Value, w) {
 			t.Errorf("%s is at %v, want %v", l.Name, l.Value, w)

@@ -266,7 +266,7 @@ func saysValues(ctx context.Context, t *testing.T, dir string) {
 	}
 	check := func(at int, words string) {
 		t.Helper()
-		for name, value := range map[string]float64{"T =": want.Periods[at], "median": want.Percentiles["50"][at], "84 %": want.Percentiles["84"][at], "mean": want.MeanOf[at]} {
+		for name, value := range map[string]float64{"T =": want.Periods[at], "median": want.Percentiles["50"][at], "p84": want.Percentiles["84"][at], "mean": want.MeanOf[at]} {
 			m := regexp.MustCompile(regexp.QuoteMeta(name) + ` ([0-9.e+-]+)`).FindStringSubmatch(words)
 			if m == nil {
 				t.Errorf("%q does not say %s", words, name)

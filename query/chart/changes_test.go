@@ -19,7 +19,7 @@ func inventedChanges() *Changes {
 		Title: "Changes", Quantity: "PSA (g)", Before: "run 3", After: "run 7", PeriodsS: []float64{0.1, 0.5, 2},
 		Pairs: []Pair{
 			{"median", Median, []float64{0.4, 0.2, 0.1}, []float64{0.5, 0.25, 0.125}},
-			{"84 %", Percentile, []float64{0.8, 0.5, 0.2}, []float64{nan, 0.5, 0.19}},
+			{"p84", Percentile, []float64{0.8, 0.5, 0.2}, []float64{nan, 0.5, 0.19}},
 		},
 		CountsBefore: []int{9, 9, 4}, CountsAfter: []int{5, 7, 7},
 	}
@@ -31,7 +31,7 @@ func TestChangesSayWhatTheyAre(t *testing.T) {
 	if err := Write(&file, Inline, Half, s); err != nil {
 		t.Fatal(err)
 	}
-	for _, want := range []string{">median, run 3<", ">median, run 7<", ">84 %, run 7<", ">change (%)<", ">PSA (g)<", ">-40<", ">40<", ">count<", ">9<", ">0.5<", ">0<"} {
+	for _, want := range []string{">median, run 3<", ">median, run 7<", ">p84, run 7<", ">change (%)<", ">PSA (g)<", ">-40<", ">40<", ">count<", ">9<", ">0.5<", ">0<"} {
 		if !strings.Contains(file.String(), want) {
 			t.Errorf("the figure does not say %s", want)
 		}
