@@ -63,11 +63,12 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	for i := range diagonals {
 		diagonals[i].draw(&f)
 	}
-	base.drawEach(&f)
-	for i := range diagonals {
-		diagonals[i].write(&f)
-	}
+	each := base.drawEach(&f)
 	read := s.readOn(&f)
+	taken := s.taken(&f, read)
+	for i := range diagonals {
+		diagonals[i].write(&f, each, taken)
+	}
 	names := f
 	if n := len(read); n > 0 {
 		names.Min.Y += lineRoom * vg.Length(4*n+1)
@@ -157,102 +158,22 @@ func equalDecades(c draw.Canvas, f *frame) draw.Canvas {
 	return c
 }
 
-// diagonal is a line of equal SD, which falls, or of equal PSA, which rises.
-type diagonal struct {
-	tick
-	unit  string
-	rises bool
-	psv   func(periodS float64) float64 // m/s
+// lines are those on which the three values of a reading are read.
+func (r *Reading) lines(f *frame) [][]vg.Point {
+	sd, _, psa := r.Values()
+	at := f.point(r.PeriodS, r.PSV)
+	return f.ClipLinesXY(
+		[]vg.Point{{X: at.X, Y: f.Min.Y}, at}, []vg.Point{{X: f.Min.X, Y: at.Y}, at},
+		[]vg.Point{at, f.point(f.x.to, sd*2*math.Pi/f.x.to)}, []vg.Point{at, f.point(f.x.from, psa*standardGravity*f.x.from/(2*math.Pi))},
+	)
 }
 
-// diagonals are those at the steps of decades that the frame can have.
-func (s *FourWay) diagonals(f *frame) (out []diagonal) {
-	leastSD, mostSD, leastPSA, mostPSA := math.Inf(1), 0.0, math.Inf(1), 0.0
-	for _, periodS := range []float64{f.x.from, f.x.to} {
-		for _, psv := range []float64{f.y.from, f.y.to} {
-			sd, _, psa := Reading{PeriodS: periodS, PSV: psv}.Values()
-			leastSD, mostSD, leastPSA, mostPSA = min(leastSD, sd), max(mostSD, sd), min(leastPSA, psa), max(mostPSA, psa)
-		}
-	}
-	for _, t := range logAxis("", leastSD/s.Units.SDInM, mostSD/s.Units.SDInM).ticks {
-		value := t.at * s.Units.SDInM
-		out = append(out, diagonal{t, s.Units.SD, false, func(periodS float64) float64 { return value * 2 * math.Pi / periodS }})
-	}
-	for _, t := range logAxis("", leastPSA, mostPSA).ticks {
-		value := t.at * standardGravity
-		out = append(out, diagonal{t, "g", true, func(periodS float64) float64 { return value * periodS / (2 * math.Pi) }})
-	}
-	return out
-}
-
-// within are the ends of the line within the frame, the upper one first; ok is false where
-// it does not cross the frame.
-func (d *diagonal) within(f *frame) (upper, lower vg.Point, ok bool) {
-	pieces := f.ClipLinesXY([]vg.Point{f.point(f.x.from, d.psv(f.x.from)), f.point(f.x.to, d.psv(f.x.to))})
-	if len(pieces) == 0 {
-		return upper, lower, false
-	}
-	upper, lower = pieces[0][0], pieces[0][len(pieces[0])-1]
-	if d.rises {
-		upper, lower = lower, upper
-	}
-	return upper, lower, true
-}
-
-func (d *diagonal) draw(f *frame) {
-	width := vg.Length(0.35)
-	if d.isMain {
-		width = 0.7
-	}
-	if upper, lower, ok := d.within(f); ok {
-		f.StrokeLine2(draw.LineStyle{Color: rule, Width: width}, upper.X, upper.Y, lower.X, lower.Y)
-	}
-}
-
-// write names a main line, along it at its upper end.
-func (d *diagonal) write(f *frame) {
-	style := writing(noteSize, quiet)
-	words := d.name + " " + d.unit
-	length := style.Width(words)
-	upper, lower, ok := d.within(f)
-	if !ok || !d.isMain || upper.Y-lower.Y < 2*length {
-		return
-	}
-	const margin = 6
-	run := vg.Length(math.Sqrt2 / 2)
-	at := vg.Point{X: upper.X + margin, Y: upper.Y - margin}
-	style.Rotation = -math.Pi / 4
-	if d.rises {
-		style.Rotation = math.Pi / 4
-		at = vg.Point{X: upper.X - margin - length*run, Y: upper.Y - margin - length*run}
-	}
-	along := vg.Point{X: run, Y: run}
-	if !d.rises {
-		along.Y = -run
-	}
-	f.behind(at, along, length)
-	f.FillText(style, at, words)
-}
-
-// behind lays paper behind words of a length that begin at a point and go a way.
-func (f *frame) behind(at, along vg.Point, length vg.Length) {
-	half := vg.Point{X: -along.Y, Y: along.X}.Scale(noteSize * 0.6)
-	end := at.Add(along.Scale(length))
-	f.FillPolygon(paper, []vg.Point{at.Add(half), end.Add(half), end.Sub(half), at.Sub(half)})
-}
-
-// read marks a point, with the lines on which its three values are read, and writes these,
-// each reading above the one before.
+// read marks a point, with its lines, and writes the three values, each reading above the one
+// before.
 func (s *FourWay) read(f *frame, r *Reading, nth int) {
 	sd, psv, psa := r.Values()
 	at := f.point(r.PeriodS, r.PSV)
-	line := draw.LineStyle{Color: mark, Width: 0.8, Dashes: []vg.Length{3, 2}}
-	for _, piece := range f.ClipLinesXY(
-		[]vg.Point{{X: at.X, Y: f.Min.Y}, at}, []vg.Point{{X: f.Min.X, Y: at.Y}, at},
-		[]vg.Point{at, f.point(f.x.to, sd*2*math.Pi/f.x.to)}, []vg.Point{at, f.point(f.x.from, psa*standardGravity*f.x.from/(2*math.Pi))},
-	) {
-		f.StrokeLines(line, piece)
-	}
+	f.StrokeLines(draw.LineStyle{Color: mark, Width: 0.8, Dashes: []vg.Length{3, 2}}, r.lines(f)...)
 	f.DrawGlyph(draw.GlyphStyle{Color: mark, Radius: 2.4, Shape: draw.CircleGlyph{}}, at)
 	words := []string{r.Name,
 		fmt.Sprintf("SD %s %s", three(sd/s.Units.SDInM), s.Units.SD),

@@ -110,8 +110,8 @@ const tolerance vg.Length = 0.12
 const strokePoints = 300
 
 // drawEach draws the single spectra, of which only that is drawn which can be seen, and lays
-// the band over them.
-func (s *Spectra) drawEach(f *frame) {
+// the band over them. It returns where they lie.
+func (s *Spectra) drawEach(f *frame) *cover {
 	c := newCover(f.Rectangle, hair)
 	f.SetLineStyle(draw.LineStyle{Color: single(len(s.Each)), Width: hair})
 	var path vg.Path
@@ -134,6 +134,7 @@ func (s *Spectra) drawEach(f *frame) {
 	if s.Band.Low != nil {
 		f.region(veil, s.PeriodsS, s.Band.Low, s.Band.High)
 	}
+	return c
 }
 
 func appendLine(path *vg.Path, line []vg.Point) {

@@ -23,6 +23,12 @@ func newCover(area vg.Rectangle, width vg.Length) *cover {
 	return c
 }
 
+// at is the cell of a point, if it has one.
+func (c *cover) at(p vg.Point) (at int, ok bool) {
+	column, row := int((p.X-c.area.Min.X)/c.cell), int((p.Y-c.area.Min.Y)/c.cell)
+	return row*c.columns + column, column >= 0 && row >= 0 && column < c.columns && row < c.rows
+}
+
 // newShare is the share of a segment's cells that must be blank for it to be seen.
 const newShare = 0.35
 
@@ -56,9 +62,8 @@ func (c *cover) segment(a, b vg.Point) bool {
 	count := 0
 	for i := range steps + 1 {
 		t := vg.Length(i) / vg.Length(steps)
-		column, row := int((a.X+t*(b.X-a.X)-c.area.Min.X)/c.cell), int((a.Y+t*(b.Y-a.Y)-c.area.Min.Y)/c.cell)
-		at := row*c.columns + column
-		if column < 0 || row < 0 || column >= c.columns || row >= c.rows || at == last {
+		at, ok := c.at(vg.Point{X: a.X + vg.Length(float64(t*(b.X-a.X))), Y: a.Y + vg.Length(float64(t*(b.Y-a.Y)))})
+		if !ok || at == last {
 			continue
 		}
 		last = at
