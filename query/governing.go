@@ -63,8 +63,8 @@ func (a *PortfolioAnswer) Governing() Governing {
 // Governing is of no record: estimates are of several.
 func (a *NearestAnswer) Governing() Governing { return nil }
 
-// Sheet is what is known of the record.
-func (a *RecordAnswer) Sheet() *Sheet {
+// Sheet is what is known of the record, in units.
+func (a *RecordAnswer) Sheet(units Units) *Sheet {
 	first := &a.Rows[0]
 	s := &Sheet{Title: printable(a.Code)}
 	for _, line := range []string{first.eventWords(), first.stationWords(), first.distanceWords()} {
@@ -72,7 +72,7 @@ func (a *RecordAnswer) Sheet() *Sheet {
 			s.Lines = append(s.Lines, printable(line))
 		}
 	}
-	s.Tables = []Table{a.deliveredTable().export("As delivered"), a.measuresTable().export("Measures")}
+	s.Tables = []Table{a.deliveredTable().export("As delivered"), a.measuresTable(units).export("Measures")}
 	for i := range a.Conditioned {
 		s.Remarks = append(s.Remarks, linesOf(a.row(a.Conditioned[i].Component).remarks())...)
 	}

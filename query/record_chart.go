@@ -23,7 +23,7 @@ func (a *RecordAnswer) Chart(units Units, marks []chart.Mark) *chart.Record {
 	}
 	c.FromS, c.ToS, c.Clock = a.clock()
 	for i := range a.Figure.Traces {
-		c.BuildUps = append(c.BuildUps, a.buildUp(&a.Figure.Traces[i]))
+		c.BuildUps = append(c.BuildUps, a.buildUp(&a.Figure.Traces[i], units))
 	}
 	c.Spectra = a.pageSpectra()
 	c.Spectra.Marks = marks
@@ -123,14 +123,15 @@ func (r *RecordRow) direction() string {
 	return fmt.Sprintf("%s, %s°", r.Component, shortest(*r.AzimuthDeg))
 }
 
-func (a *RecordAnswer) buildUp(t *RecordTrace) chart.BuildUp {
+func (a *RecordAnswer) buildUp(t *RecordTrace, units Units) chart.BuildUp {
 	r := a.row(t.Component)
 	b := chart.BuildUp{Name: t.Component, Kind: directionKinds[t.Component], FromS: t.FromS, StepS: t.StepS, Shares: t.Shares}
 	for _, m := range t.Marks {
 		b.Marks = append(b.Marks, chart.BuildUpMark{Share: m.Share, AtS: t.FromS + m.AtS})
 	}
+	unit, per := units.ofLength("m/s")
 	b.Words = []string{
-		figure(orNaN(r.Arias)) + " m/s",
+		figure(orNaN(r.Arias)/per) + " " + unit,
 		fmt.Sprintf("5–75 %.1f s, 5–95 %.1f s", orNaN(r.Significant575), orNaN(r.Significant595)),
 	}
 	return b

@@ -6,6 +6,7 @@ import (
 	"errors"
 	"math"
 	"path/filepath"
+	"regexp"
 	"slices"
 	"strings"
 	"testing"
@@ -135,6 +136,26 @@ func TestRecordChart(t *testing.T) {
 			t.Errorf("velocity peaks at %v %s, want %v in/s", trace.Peak, page.Panels[1].Unit, want)
 		}
 	}
+	for i, b := range page.BuildUps {
+		arias := *a.row(a.Figure.Traces[i].Component).Arias
+		if want := figure(arias/0.0254) + " in/s"; b.Words[0] != want {
+			t.Errorf("Arias intensity is %q, want %q", b.Words[0], want)
+		}
+	}
+	var table bytes.Buffer
+	if err := a.Write(&table, FormatTable, UnitsUS); err != nil {
+		t.Fatal(err)
+	}
+	first := &a.Rows[0]
+	row := regexp.MustCompile(`(?m)^` + first.Component + ` +0\..*$`).FindString(table.String())
+	for i, want := range []float64{first.PGA, first.PGV / 0.0254, first.PGD / 0.0254, *first.Arias / 0.0254, *first.CAV / 0.0254} {
+		if words := strings.Fields(row); len(words) != 13 || words[i+1] != figure(want) {
+			t.Errorf("column %d of %q is not %s", i+1, row, figure(want))
+		}
+	}
+	if !regexp.MustCompile(`(?m)^ +g +in/s +in +in/s +in/s +in/s +s +s +s +in/s2 +s +in$`).MatchString(table.String()) {
+		t.Errorf("other units in\n%s", table.String())
+	}
 	var out bytes.Buffer
 	if err := chart.Write(&out, chart.SVG, chart.Page, page); err != nil {
 		t.Fatal(err)
@@ -241,7 +262,7 @@ func TestRecordGolden(t *testing.T) {
 	a := askRecord(t, store, RecordQuestion{Code: "R1"})
 	for _, format := range []Format{FormatTable, FormatCSV, FormatJSON} {
 		var out bytes.Buffer
-		if err := a.Write(&out, format); err != nil {
+		if err := a.Write(&out, format, UnitsSI); err != nil {
 			t.Fatal(err)
 		}
 		golden(t, "record."+string(format)+".golden", out.Bytes())

@@ -64,6 +64,16 @@ const (
 	joulesPerKipIn = newtonsPerKip * metresPerInch
 )
 
+// ofLength is a unit of SI that holds a length once, such as "m/s", in these units, with the
+// value of one in SI; others stay.
+func (u Units) ofLength(name string) (string, float64) {
+	rest, ok := strings.CutPrefix(name, "m")
+	if u != UnitsUS || !ok || rest != "" && rest[0] != '/' {
+		return name, 1
+	}
+	return "in" + rest, metresPerInch
+}
+
 // Remarks returns the lines that belong to an answer beside its rows: what was
 // left out and why, and notes. It is empty where there is none, and ends in a
 // line end otherwise. Tables and JSON have them; beside CSV they go to people by

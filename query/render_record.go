@@ -7,11 +7,12 @@ import (
 	"strings"
 )
 
-// Write renders what is known: as a table for people, as JSON, and as CSV in the rows of a
-// RecordsAnswer. The error is a UsageError for another format and otherwise one of w.
-func (a *RecordAnswer) Write(w io.Writer, format Format) error {
+// Write renders what is known: as a table for people, in their units, and in SI as JSON, and as
+// CSV in the rows of a RecordsAnswer. The error is a UsageError for another format and otherwise
+// one of w.
+func (a *RecordAnswer) Write(w io.Writer, format Format, units Units) error {
 	rows := RecordsAnswer{Rows: a.Rows}
-	return answer{"record", a.table, rows.csv, a.object}.write(w, format)
+	return answer{"record", func() []byte { return a.table(units) }, rows.csv, a.object}.write(w, format)
 }
 
 // Remarks are the lines on what is lacking.
@@ -23,7 +24,7 @@ func (a *RecordAnswer) Remarks() string {
 	return b.String()
 }
 
-func (a *RecordAnswer) table() []byte {
+func (a *RecordAnswer) table(units Units) []byte {
 	first := &a.Rows[0]
 	text := fmt.Appendf(nil, "Record %s\n\n", printable(a.Code))
 	for _, line := range [][2]string{
@@ -36,7 +37,7 @@ func (a *RecordAnswer) table() []byte {
 	text = append(text, '\n')
 	text = a.deliveredTable().appendTo(text)
 	text = append(text, '\n')
-	text = a.measuresTable().appendTo(text)
+	text = a.measuresTable(units).appendTo(text)
 	text = append(text, '\n')
 	for i := range a.Conditioned {
 		text = fmt.Appendf(text, "computed: %s: %s\n", a.Conditioned[i].Component, a.Conditioned[i].words())
@@ -84,17 +85,25 @@ func (a *RecordAnswer) deliveredTable() *table {
 }
 
 // measuresTable is the measures of the motions of which the spectra were computed.
-func (a *RecordAnswer) measuresTable() *table {
+func (a *RecordAnswer) measuresTable(units Units) *table {
 	t := &table{columns: []column{
 		{name: "component", isWord: true}, {name: "PGA", unit: "g"}, {name: "PGV", unit: "m/s"}, {name: "PGD", unit: "m"},
 		{name: "Arias", unit: "m/s"}, {name: "CAV", unit: "m/s"}, {name: "CAV > 0.025 g", unit: "m/s"}, {name: "5-75%", unit: "s"}, {name: "5-95%", unit: "s"},
 		{name: "over 0.05 g", unit: "s"}, {name: "rms", unit: "m/s2"}, {name: "mean period", unit: "s"}, {name: "SI", unit: "m"},
 	}}
+	pers := make([]float64, len(t.columns))
+	for i := range t.columns {
+		t.columns[i].unit, pers[i] = units.ofLength(t.columns[i].unit)
+	}
 	for i := range a.Rows {
 		r := &a.Rows[i]
-		cells := []string{r.Component, figure(r.PGA), figure(r.PGV), figure(r.PGD)}
+		values := []float64{r.PGA, r.PGV, r.PGD}
 		for _, x := range r.intensities() {
-			cells = append(cells, figure(orNaN(*x)))
+			values = append(values, orNaN(*x))
+		}
+		cells := []string{r.Component}
+		for k, v := range values {
+			cells = append(cells, figure(v/pers[k+1]))
 		}
 		t.add(cells...)
 	}

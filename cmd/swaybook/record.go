@@ -25,7 +25,7 @@ func queryRecordCommand() *cli.Command {
 			&cli.StringFlag{Name: "plot", Usage: "draw a page of traces and spectra in a `FILE` too, .svg or .png; one that is there is replaced"},
 			axesFlag("of the figure: log (of the page's spectra), or four-way (of --component, damping by damping, instead of the page)"),
 			markFlag(),
-			&cli.StringFlag{Name: "units", Value: "si", Usage: "units of the figure: si or us"},
+			&cli.StringFlag{Name: "units", Value: "si", Usage: "units for people: si or us"},
 		},
 		Action: func(c *cli.Context) error {
 			o, err := newRecordOptions(c)
@@ -83,7 +83,7 @@ func runRecord(ctx context.Context, store *db.Store, o recordOptions, w, stderr 
 	if o.format == query.FormatCSV {
 		fmt.Fprint(stderr, answer.Remarks())
 	}
-	return answer.Write(w, o.format)
+	return answer.Write(w, o.format, o.units)
 }
 
 func (o *recordOptions) figure(a *query.RecordAnswer) figure {

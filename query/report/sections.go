@@ -93,7 +93,7 @@ func Drawn(caption string, c chart.Chart, size chart.Size) []Figure {
 // Record is the part of a record: its traces and spectra, and what is known of it. The answer
 // has its figure.
 func Record(id string, a *query.RecordAnswer, units query.Units) Section {
-	out := Of(id, a.Sheet())
+	out := Of(id, a.Sheet(units))
 	out.Figures = []Figure{{Caption: "Traces of the motion that spectra were computed of, the build-up of Arias intensity, and spectra.", Chart: a.Chart(units, nil), Size: chart.Page}}
 	return out
 }
