@@ -54,6 +54,10 @@ func TestRecordHasItsWords(t *testing.T) {
 			t.Errorf("%q is not written", want)
 		}
 	}
+	s.Panels[0].Traces[0].Peak, s.Panels[0].Traces[0].PeakS = -0.00856, 119.86 // wide
+	if words := string(writtenPage(t, s)); !strings.Contains(words, "\n-0.00856 m/s at 119.86 s\n") {
+		t.Error("the value of a peak is cut")
+	}
 	s.Sections[0].Lines[0] = strings.Repeat("far too many words ", 400)
 	if words := string(writtenPage(t, s)); strings.Contains(words, "the last") || !strings.Contains(words, "\n… and 2 more\n") {
 		t.Error("what has no room is not left out and counted")

@@ -45,6 +45,14 @@ func upwards(s draw.TextStyle) draw.TextStyle {
 	return s
 }
 
+// fitting is a style of labels or, where words need that to have room, of notes.
+func fitting(c color.Color, words string, width vg.Length) draw.TextStyle {
+	if s := writing(labelSize, c); s.Width(words) <= width {
+		return s
+	}
+	return writing(noteSize, c)
+}
+
 // shorten cuts a text to a width, with an ellipsis.
 func shorten(s draw.TextStyle, words string, width vg.Length) string {
 	if s.Width(words) <= width {

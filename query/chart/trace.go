@@ -87,7 +87,7 @@ func (t *Trace) draw(f *frame, unit string) {
 	at := vg.Point{X: f.Max.X + 6, Y: (f.Min.Y + f.Max.Y) / 2}
 	f.FillText(bold(labelSize, tone), at.Add(vg.Point{Y: lineRoom / 2}), t.Name)
 	words := fmt.Sprintf("%s %s at %.2f s", three(t.Peak), unit, t.PeakS)
-	style := writing(labelSize, ink)
+	style := fitting(ink, words, rightRoom-8)
 	f.FillText(style, at.Sub(vg.Point{Y: lineRoom / 2}), shorten(style, words, rightRoom-8))
 }
 
