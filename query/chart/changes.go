@@ -50,13 +50,13 @@ func (s *Changes) base() *Spectra {
 	return b
 }
 
+// IsEmpty reports whether no value is positive.
+func (s *Changes) IsEmpty() bool { return s.base().IsEmpty() }
+
 // Draw draws the chart.
-func (s *Changes) Draw(c draw.Canvas) error {
+func (s *Changes) Draw(c draw.Canvas) {
 	base := s.base()
 	lowest, highest := base.extent()
-	if len(s.PeriodsS) == 0 || !(highest > 0) {
-		return ErrNothing
-	}
 	h := newHeading(c, s.Title, s.Notes, s.Foot)
 	h.write(c)
 	bottom := footRoom + bottomRoom
@@ -73,7 +73,6 @@ func (s *Changes) Draw(c draw.Canvas) error {
 	s.drawChanges(&lower)
 	base.drawCounts(&strip, slices.Max(append([]int{1}, s.CountsBefore...)))
 	s.drawBefore(&strip)
-	return nil
 }
 
 // changeAxis reaches as far down as up, to a tenth of a percent at least.

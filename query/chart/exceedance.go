@@ -48,17 +48,22 @@ func (p *ExceedancePanel) at(value float64) float64 {
 // levelRoom is that of the levels' names, panelGap between panels.
 const levelRoom, panelGap vg.Length = 164, 6
 
-// Draw draws the chart.
-func (s *Exceedance) Draw(c draw.Canvas) error {
-	var shown []ExceedancePanel
+// shown are the panels of which a value is positive.
+func (s *Exceedance) shown() (out []ExceedancePanel) {
 	for _, p := range s.Panels {
 		if n := len(p.Values); n > 0 && p.Values[n-1] > 0 {
-			shown = append(shown, p)
+			out = append(out, p)
 		}
 	}
-	if len(shown) == 0 {
-		return ErrNothing
-	}
+	return out
+}
+
+// IsEmpty reports whether no value is positive.
+func (s *Exceedance) IsEmpty() bool { return s.shown() == nil }
+
+// Draw draws the chart.
+func (s *Exceedance) Draw(c draw.Canvas) {
+	shown := s.shown()
 	h := newHeading(c, s.Title, s.Notes, s.Foot)
 	h.write(c)
 	area := draw.Crop(c, leftRoom, -levelRoom, footRoom, -h.room())
@@ -69,7 +74,6 @@ func (s *Exceedance) Draw(c draw.Canvas) error {
 		f.Min.Y = f.Max.Y - height + bottomRoom + panelGap
 		shown[i].draw(&f)
 	}
-	return nil
 }
 
 // axis has all values and levels.

@@ -50,12 +50,12 @@ func (r Reading) Values() (sd, psv, psa float64) {
 	return r.PSV / omega, r.PSV, r.PSV * omega / standardGravity
 }
 
+// IsEmpty reports whether no value is positive.
+func (s *FourWay) IsEmpty() bool { return s.base().IsEmpty() }
+
 // Draw draws the chart.
-func (s *FourWay) Draw(c draw.Canvas) error {
+func (s *FourWay) Draw(c draw.Canvas) {
 	base := s.base()
-	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
-		return ErrNothing
-	}
 	h, f := s.layout(c, base)
 	h.write(c)
 	f.grid()
@@ -84,7 +84,6 @@ func (s *FourWay) Draw(c draw.Canvas) error {
 	for i, r := range read {
 		s.read(&f, r, i)
 	}
-	return nil
 }
 
 // base is what the chart has in common with one of spectra.

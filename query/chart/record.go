@@ -63,11 +63,11 @@ const (
 	sectionsShare = 0.38
 )
 
+// IsEmpty reports whether there is no trace.
+func (s *Record) IsEmpty() bool { return len(s.Panels) == 0 || !(s.ToS > s.FromS) }
+
 // Draw draws the page.
-func (s *Record) Draw(c draw.Canvas) error {
-	if len(s.Panels) == 0 || !(s.ToS > s.FromS) {
-		return ErrNothing
-	}
+func (s *Record) Draw(c draw.Canvas) {
 	x := spanAxis("time (s) "+s.Clock, s.FromS, s.ToS)
 	notes := s.Notes
 	if periods := s.Spectra.axis(); periods != nil {
@@ -88,7 +88,6 @@ func (s *Record) Draw(c draw.Canvas) error {
 		panel.Min.Y = panel.Max.Y - height + pageGap
 		s.Panels[i].draw(panel, x, false)
 	}
-	return nil
 }
 
 // drawBuildUps draws the build-ups, with dots at their marks.

@@ -36,14 +36,16 @@ var shapes = []draw.GlyphDrawer{
 // told apart.
 const pointRadius, pointCell vg.Length = 2.2, 1
 
+// IsEmpty reports whether there is no point.
+func (s *Scatter) IsEmpty() bool {
+	return !slices.ContainsFunc(s.Groups, func(g PointGroup) bool { return len(g.X) > 0 })
+}
+
 // Draw draws the chart.
-func (s *Scatter) Draw(c draw.Canvas) error {
+func (s *Scatter) Draw(c draw.Canvas) {
 	h := newHeading(c, s.Title, s.Notes, s.Foot)
-	f, ok := s.frame(c, &h)
-	if !ok {
-		return ErrNothing
-	}
 	h.write(c)
+	f := s.frame(c, &h)
 	f.grid()
 	order := make([]int, len(s.Groups))
 	for i := range order {
@@ -58,28 +60,24 @@ func (s *Scatter) Draw(c draw.Canvas) error {
 	}
 	s.key(&f)
 	f.axes(true)
-	return nil
 }
 
 func shapeOf(group int) draw.GlyphStyle {
 	return draw.GlyphStyle{Color: tone, Radius: pointRadius, Shape: shapes[min(group, len(shapes)-1)]}
 }
 
-// frame is that of all points; ok is false where there are none.
-func (s *Scatter) frame(c draw.Canvas, h *heading) (f frame, ok bool) {
+// frame is that of all points.
+func (s *Scatter) frame(c draw.Canvas, h *heading) (f frame) {
 	lowX, highX, lowY, highY := math.Inf(1), math.Inf(-1), math.Inf(1), math.Inf(-1)
 	for _, g := range s.Groups {
 		for i, x := range g.X {
 			lowX, highX, lowY, highY = min(lowX, x), max(highX, x), min(lowY, g.Y[i]), max(highY, g.Y[i])
 		}
 	}
-	if !(highX > 0) {
-		return f, false
-	}
 	// Half a unit of room keeps points off the axes.
 	f = frame{x: newAxis(s.X, lowX, highX, true), y: spanAxis(s.Y, math.Floor(2*lowY-0.5)/2, math.Ceil(2*highY+0.5)/2)}
 	f.Canvas = draw.Crop(c, leftRoom, -rightRoom, footRoom+bottomRoom, -h.room())
-	return f, true
+	return f
 }
 
 // distinct are the points of a group of which no two are in one cell.

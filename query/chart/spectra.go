@@ -1,7 +1,6 @@
 package chart
 
 import (
-	"errors"
 	"math"
 	"slices"
 	"strconv"
@@ -44,14 +43,14 @@ const (
 	stripGap  vg.Length = 8
 )
 
-// ErrNothing says that there is nothing to draw.
-var ErrNothing = errors.New("nothing to draw: all values are missing or zero")
+// IsEmpty reports whether no value is positive.
+func (s *Spectra) IsEmpty() bool {
+	_, highest := s.extent()
+	return len(s.PeriodsS) == 0 || !(highest > 0)
+}
 
 // Draw draws the chart.
-func (s *Spectra) Draw(c draw.Canvas) error {
-	if _, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
-		return ErrNothing
-	}
+func (s *Spectra) Draw(c draw.Canvas) {
 	h, f, strip := s.layout(c)
 	h.write(c)
 	f.grid()
@@ -60,7 +59,6 @@ func (s *Spectra) Draw(c draw.Canvas) error {
 	f.drawMarks(s.Marks, rightRoom-flagGap)
 	f.axes(false)
 	s.drawCounts(&strip, 1)
-	return nil
 }
 
 // layout is the heading, the frame of the spectra, and that of the counts below it. Something is

@@ -18,7 +18,7 @@ type Strip struct {
 // Strips are the parts of a chart of a size, from left to right: of every period within the
 // frame the part that is nearer to it, on the axis, than to others.
 func (s *Spectra) Strips(size Size) []Strip {
-	if lowest, highest := s.extent(); len(s.PeriodsS) == 0 || !(highest > 0) || !(lowest > 0) {
+	if s.IsEmpty() {
 		return nil
 	}
 	_, f, _ := s.layout(size.canvas())
@@ -27,11 +27,10 @@ func (s *Spectra) Strips(size Size) []Strip {
 
 // Strips are those of the chart's frame, as of Spectra.
 func (s *FourWay) Strips(size Size) []Strip {
-	base := s.base()
-	if _, highest := base.extent(); len(s.PeriodsS) == 0 || !(highest > 0) {
+	if s.IsEmpty() {
 		return nil
 	}
-	_, f := s.layout(size.canvas(), base)
+	_, f := s.layout(size.canvas(), s.base())
 	return f.strips(s.PeriodsS, size)
 }
 

@@ -2,6 +2,7 @@ package chart
 
 import (
 	"bytes"
+	"errors"
 	"fmt"
 	"image/color"
 	"io"
@@ -25,9 +26,14 @@ const (
 
 // Chart can be drawn on a canvas.
 type Chart interface {
-	// Draw returns an error where there is nothing to draw.
-	Draw(c draw.Canvas) error
+	// IsEmpty reports whether there is nothing to draw.
+	IsEmpty() bool
+	// Draw draws a chart that is not empty.
+	Draw(c draw.Canvas)
 }
+
+// ErrNothing says that there is nothing to draw.
+var ErrNothing = errors.New("nothing to draw: all values are missing or zero")
 
 // Size is that of a chart on paper.
 type Size struct{ Width, Height vg.Length }
@@ -44,18 +50,19 @@ var Page = Size{17 * vg.Centimeter, 25.7 * vg.Centimeter}
 // dotsPerInch is the resolution of PNG: fine in print at half a page.
 const dotsPerInch = 200
 
-// Write draws a chart on white.
+// Write draws a chart on white. The error is ErrNothing of one that is empty.
 func Write(w io.Writer, format Format, size Size, chart Chart) error {
 	canvas, out, err := newCanvas(format, size)
 	if err != nil {
 		return err
 	}
+	if chart.IsEmpty() {
+		return ErrNothing
+	}
 	c := draw.NewCanvas(canvas, size.Width, size.Height)
 	c.SetColor(color.White)
 	c.Fill(c.Rectangle.Path())
-	if err := chart.Draw(c); err != nil {
-		return err
-	}
+	chart.Draw(c)
 	_, err = out.WriteTo(w)
 	return err
 }

@@ -1,9 +1,7 @@
 package report
 
 import (
-	"errors"
 	"fmt"
-	"io"
 	"slices"
 	"strings"
 
@@ -84,7 +82,7 @@ func Demand(id string, a *query.DemandAnswer, units query.Units, isLinear bool, 
 
 // Drawn is a figure of a chart, none where there is nothing to draw.
 func Drawn(caption string, c chart.Chart, size chart.Size) []Figure {
-	if errors.Is(chart.Write(io.Discard, chart.Inline, size, c), chart.ErrNothing) {
+	if c.IsEmpty() {
 		return nil
 	}
 	return []Figure{{Caption: caption, Chart: c, Size: size}}
