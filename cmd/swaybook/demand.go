@@ -93,17 +93,9 @@ func (o *demandOptions) figure(a *query.DemandAnswer, units query.Units) figure 
 }
 
 func runDemand(ctx context.Context, store *db.Store, o demandOptions, w, stderr io.Writer) error {
-	if err := o.plot.check(); err != nil {
-		return err
-	}
-	answer, err := o.question.Ask(ctx, store)
+	answer, err := askAndDraw(ctx, store, &o.plot, o.question, func(a *query.DemandAnswer) (figure, error) { return o.figure(a, o.units), nil })
 	if err != nil {
 		return err
-	}
-	if o.plot.file != "" {
-		if err := o.plot.write(o.figure(answer, o.units)); err != nil {
-			return err
-		}
 	}
 	return writeAnswer(answer, o.format, o.units, w, stderr)
 }

@@ -2,6 +2,7 @@ package main
 
 import (
 	"cmp"
+	"context"
 	"io"
 	"os"
 	"path/filepath"
@@ -10,6 +11,7 @@ import (
 
 	"github.com/urfave/cli/v2"
 
+	"swaybook/db"
 	"swaybook/pipeline/beside"
 	"swaybook/query"
 	"swaybook/query/chart"
@@ -94,6 +96,26 @@ func (o *plotOptions) check() error {
 		return ofFlag("plot", usagef("--plot %s: what is there is no file", o.file))
 	}
 	return nil
+}
+
+// question is one whose answer can be drawn.
+type question[A any] interface {
+	Ask(context.Context, *db.Store) (A, error)
+}
+
+// askAndDraw asks a question and draws its answer, where there is to be a figure.
+func askAndDraw[A any](ctx context.Context, store *db.Store, o *plotOptions, q question[A], draw func(A) (figure, error)) (answer A, err error) {
+	if err = o.check(); err != nil {
+		return answer, err
+	}
+	if answer, err = q.Ask(ctx, store); err != nil || o.file == "" {
+		return answer, err
+	}
+	drawn, err := draw(answer)
+	if err == nil {
+		err = o.write(drawn)
+	}
+	return answer, err
 }
 
 // write draws a figure; the file is there whole, or as it was.

@@ -219,23 +219,14 @@ func writeAnswer(answer statistics, format query.Format, units query.Units, w, s
 }
 
 func runSpectrum(ctx context.Context, store *db.Store, o spectrumOptions, w, stderr io.Writer) error {
-	if err := o.plot.check(); err != nil {
-		return err
-	}
-	answer, err := o.question.Ask(ctx, store)
+	answer, err := askAndDraw(ctx, store, &o.plot, o.question, func(a *query.SpectrumAnswer) (figure, error) {
+		if o.against != 0 {
+			return o.changes(ctx, store, a)
+		}
+		return o.plot.of(a, o.units), nil
+	})
 	if err != nil {
 		return err
-	}
-	if o.plot.file != "" {
-		drawn := o.plot.of(answer, o.units)
-		if o.against != 0 {
-			if drawn, err = o.changes(ctx, store, answer); err != nil {
-				return err
-			}
-		}
-		if err := o.plot.write(drawn); err != nil {
-			return err
-		}
 	}
 	return writeAnswer(answer, o.format, o.units, w, stderr)
 }

@@ -68,17 +68,9 @@ func newRecordOptions(c *cli.Context) (o recordOptions, err error) {
 }
 
 func runRecord(ctx context.Context, store *db.Store, o recordOptions, w, stderr io.Writer) error {
-	if err := o.plot.check(); err != nil {
-		return err
-	}
-	answer, err := o.question.Ask(ctx, store)
+	answer, err := askAndDraw(ctx, store, &o.plot, o.question, func(a *query.RecordAnswer) (figure, error) { return o.figure(a), nil })
 	if err != nil {
 		return err
-	}
-	if o.plot.file != "" {
-		if err := o.plot.write(o.figure(answer)); err != nil {
-			return err
-		}
 	}
 	if o.format == query.FormatCSV {
 		fmt.Fprint(stderr, answer.Remarks())
