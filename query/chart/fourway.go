@@ -152,8 +152,8 @@ func equalDecades(c draw.Canvas, f *frame) draw.Canvas {
 	across, up := math.Log10(f.x.to/f.x.from), math.Log10(f.y.to/f.y.from)
 	size := c.Size()
 	decade := min(size.X/vg.Length(across), size.Y/vg.Length(up))
-	c.Max.X = c.Min.X + decade*vg.Length(across)
-	c.Min.Y = c.Max.Y - decade*vg.Length(up)
+	c.Max.X = c.Min.X + vg.Length(float64(decade)*across)
+	c.Min.Y = c.Max.Y - vg.Length(float64(decade)*up)
 	return c
 }
 

@@ -18,7 +18,8 @@ type frame struct {
 // point is where a value lies.
 func (f *frame) point(x, y float64) vg.Point {
 	size := f.Size()
-	return vg.Point{X: f.Min.X + size.X*vg.Length(f.x.at(x)), Y: f.Min.Y + size.Y*vg.Length(f.y.at(y))}
+	// Products are rounded, so that a point is the same where they could be fused with the sum.
+	return vg.Point{X: f.Min.X + vg.Length(float64(size.X)*f.x.at(x)), Y: f.Min.Y + vg.Length(float64(size.Y)*f.y.at(y))}
 }
 
 // isShown reports whether a value can be drawn, if perhaps outside the frame.
