@@ -5,6 +5,8 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+
+	"golang.org/x/sync/errgroup"
 )
 
 // Gathered counts what came from a shard.
@@ -25,6 +27,9 @@ func (g *Gathered) Add(more Gathered) {
 
 // gatherBatch is how many files, or computations, come in one transaction.
 const gatherBatch = 64
+
+// gatherBytes bounds the files of a transaction, however long they are.
+const gatherBytes = 8 << 20
 
 // gathering takes over a shard.
 type gathering struct {
@@ -121,55 +126,125 @@ func intakeRows(ctx context.Context, q queryer, shard int, key IntakeKey) ([]int
 
 // files takes over what reading made of files, and their samples.
 func (g *gathering) files(ctx context.Context) error {
+	return ahead(ctx, g.readFiles, func(batch filesComing) error {
+		return g.update(ctx, batch.looked, func(t *Tx) error {
+			for _, in := range batch.files {
+				if err := t.PutIntake(ctx, g.part.Number, in); err != nil {
+					return err
+				}
+			}
+			if len(batch.files) == 0 {
+				return nil
+			}
+			g.done.Files += len(batch.files)
+			return t.noteChange(ctx)
+		})
+	})
+}
+
+// filesComing are those of so many files that were looked at of which the store has not what
+// the shard has.
+type filesComing struct {
+	looked int
+	files  []Intake
+	bytes  int
+}
+
+func (g *gathering) readFiles(ctx context.Context, pass func(filesComing) error) error {
 	for key := BeforeIntake; ; {
 		rows, err := intakeRows(ctx, g.part.tx, g.part.Number, key)
 		if err != nil || len(rows) == 0 {
 			return err
 		}
-		err = g.update(ctx, len(rows), func(t *Tx) error {
-			for _, row := range rows {
-				same, err := t.idOf(ctx, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ? AND sha256 = ?`, row.key.Path, row.key.Member, g.part.Number, row.sum)
-				if err == nil && same == 0 {
-					err = g.file(ctx, t, row)
-				}
-				if err != nil {
-					return err
-				}
+		key = rows[len(rows)-1].key
+		batch := filesComing{looked: len(rows)}
+		for _, row := range rows {
+			same, err := idOf(ctx, g.store.read, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ? AND sha256 = ?`, row.key.Path, row.key.Member, g.part.Number, row.sum)
+			if err != nil {
+				return err
 			}
-			return nil
-		})
-		if err != nil {
+			if same > 0 {
+				continue
+			}
+			in, err := g.part.intake(ctx, row)
+			if err != nil {
+				return err
+			}
+			batch.files = append(batch.files, in)
+			if batch.bytes += in.size(); batch.bytes < gatherBytes {
+				continue
+			}
+			if err := pass(batch); err != nil {
+				return err
+			}
+			batch = filesComing{}
+		}
+		if err := pass(batch); err != nil {
 			return err
 		}
-		key = rows[len(rows)-1].key
 	}
 }
 
-func (g *gathering) file(ctx context.Context, t *Tx, row intakeRow) error {
+// size is how many bytes it takes.
+func (in *Intake) size() int {
+	n := len(in.Said)
+	for _, s := range in.Series {
+		n += len(s.Data)
+	}
+	return n
+}
+
+// intake reads what reading made of a file.
+func (p *Part) intake(ctx context.Context, row intakeRow) (Intake, error) {
 	in := Intake{IntakeKey: row.key}
 	s := sealedSaying{sum: row.sum}
-	if err := g.part.tx.QueryRowContext(ctx, `SELECT said FROM intake WHERE id = ?`, row.id).Scan(&s.said); err != nil {
-		return err
+	if err := p.tx.QueryRowContext(ctx, `SELECT said FROM intake WHERE id = ?`, row.id).Scan(&s.said); err != nil {
+		return in, err
 	}
 	var err error
 	if in.Said, err = s.open(); err != nil {
-		return g.part.damaged("intake of "+row.key.Path, err)
+		return in, p.damaged("intake of "+row.key.Path, err)
 	}
-	rows, err := g.part.tx.QueryContext(ctx, `SELECT i.channel, i.samples, s.sha256, s.data FROM intake_series i JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
+	rows, err := p.tx.QueryContext(ctx, `SELECT i.channel, i.samples, s.sha256, s.data FROM intake_series i JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
 	if err != nil {
-		return err
+		return in, err
 	}
 	in.Series, err = collect(rows, func(s *IntakeSeries) []any { return []any{&s.Channel, &s.Samples, &s.Digest, &s.Data} })
 	if err != nil {
-		return err
+		return in, err
 	}
 	for _, s := range in.Series {
 		if _, err := DecodeSamples(s.Data, s.Samples, s.Digest); err != nil {
-			return g.part.damaged("samples of "+row.key.Path, err)
+			return in, p.damaged("samples of "+row.key.Path, err)
 		}
 	}
-	g.done.Files++
-	return errors.Join(t.PutIntake(ctx, g.part.Number, in), t.noteChange(ctx))
+	return in, nil
+}
+
+// ahead reads one batch while the one before is written.
+func ahead[T any](ctx context.Context, read func(context.Context, func(T) error) error, write func(T) error) error {
+	group, ctx := errgroup.WithContext(ctx)
+	batches := make(chan T)
+	group.Go(func() error {
+		defer close(batches)
+		return read(ctx, func(batch T) error {
+			select {
+			case batches <- batch:
+				return nil
+			case <-ctx.Done():
+				return ctx.Err()
+			}
+		})
+	})
+	group.Go(func() error {
+		for batch := range batches {
+			if err := write(batch); err != nil {
+				return err
+			}
+		}
+		return nil
+	})
+	return group.Wait()
 }
 
 // gone forgets what the shard does not have any more.

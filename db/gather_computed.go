@@ -11,11 +11,34 @@ import (
 type partComputation struct {
 	id              int64
 	inputs, failure string
+	// of are the inputs of what a pair's computation was made of, empty of a component's.
+	of        []string
+	isDamaged bool
+	computed  Spectra
+}
+
+// computationsComing are those of so many computations that the store may not have.
+type computationsComing struct {
+	looked int
+	list   []partComputation
 }
 
 // computations takes over what was computed, in the order in which it was: what was computed
 // of pairs comes behind what was of their components.
 func (g *gathering) computations(ctx context.Context) error {
+	return ahead(ctx, g.readComputations, func(batch computationsComing) error {
+		return g.update(ctx, batch.looked, func(t *Tx) error {
+			for i := range batch.list {
+				if err := g.computation(ctx, t, &batch.list[i]); err != nil {
+					return err
+				}
+			}
+			return nil
+		})
+	})
+}
+
+func (g *gathering) readComputations(ctx context.Context, pass func(computationsComing) error) error {
 	for last := int64(0); ; {
 		rows, err := g.part.tx.QueryContext(ctx, `SELECT id, inputs, coalesce(failure, '') FROM computation WHERE generation_id = ? AND id > ? ORDER BY id LIMIT ?`,
 			g.part.Generation.ID, last, gatherBatch)
@@ -31,20 +54,35 @@ func (g *gathering) computations(ctx context.Context) error {
 		if err != nil {
 			return err
 		}
-		done := g.done
-		err = g.update(ctx, len(found), func(t *Tx) error {
-			g.done = done
-			for _, c := range found {
-				if err := g.computation(ctx, t, c, damaged[c.id]); err != nil {
-					return err
-				}
+		batch := computationsComing{looked: len(found)}
+		for _, c := range found {
+			c.isDamaged = damaged[c.id]
+			isHeld, err := g.read(ctx, &c)
+			if err != nil {
+				return err
 			}
-			return nil
-		})
-		if err != nil {
+			if !isHeld {
+				batch.list = append(batch.list, c)
+			}
+		}
+		if err := pass(batch); err != nil {
 			return err
 		}
 	}
+}
+
+// read reads a computation, unless the store is seen to have it.
+func (g *gathering) read(ctx context.Context, c *partComputation) (isHeld bool, err error) {
+	if c.of, err = g.part.madeOf(ctx, c.inputs); err != nil {
+		return false, err
+	}
+	held, err := heldComputation(ctx, g.store.read, g.generation, c)
+	if err != nil || held.id != 0 || c.isDamaged || c.failure != "" {
+		return held.id != 0, err
+	}
+	c.computed, err = g.part.spectra(ctx, c.id)
+	c.isDamaged = len(c.computed.sd) != len(g.part.Generation.Grid.Dampings)
+	return false, err
 }
 
 // damagedIn returns which computations with numbers from first to last have measures and the
@@ -63,29 +101,17 @@ func (g *gathering) damagedIn(ctx context.Context, first, last int64) (map[int64
 	return out, err
 }
 
-// computation takes over one, unless it is there.
-func (g *gathering) computation(ctx context.Context, t *Tx, c partComputation, isDamaged bool) error {
-	inputs, err := g.inputs(ctx, t, c.inputs)
-	if err != nil || inputs == "" {
+// computation stores one, unless it is there.
+func (g *gathering) computation(ctx context.Context, t *Tx, c *partComputation) error {
+	held, err := heldComputation(ctx, t.tx, g.generation, c)
+	if err != nil || held.id != 0 || held.inputs == "" {
 		return err
 	}
-	held, err := t.idOf(ctx, `SELECT id FROM computation WHERE generation_id = ? AND inputs = ?`, g.generation, inputs)
-	if err != nil || held != 0 {
-		return err
-	}
-	var computed Spectra
-	if !isDamaged && c.failure == "" {
-		computed, err = g.part.spectra(ctx, c.id)
-		if err != nil {
-			return err
-		}
-		isDamaged = len(computed.sd) != len(g.part.Generation.Grid.Dampings)
-	}
-	if isDamaged {
+	if c.isDamaged {
 		g.done.Damaged++
 		return nil
 	}
-	id, err := t.insert(ctx, `INSERT INTO computation (generation_id, inputs, failure) VALUES (?, ?, ?)`, g.generation, inputs, textOrNull(c.failure))
+	id, err := t.insert(ctx, `INSERT INTO computation (generation_id, inputs, failure) VALUES (?, ?, ?)`, g.generation, held.inputs, textOrNull(c.failure))
 	if err != nil {
 		return err
 	}
@@ -93,29 +119,51 @@ func (g *gathering) computation(ctx context.Context, t *Tx, c partComputation, i
 	if c.failure != "" {
 		return t.sealComputation(ctx, id, Spectra{}, c.failure)
 	}
-	return t.addSpectra(ctx, id, computed)
+	return t.addSpectra(ctx, id, c.computed)
 }
 
-// inputs are those that a computation has in the store that takes: a pair's name the
-// computations of its components. They are "" where one of these did not come.
-func (g *gathering) inputs(ctx context.Context, t *Tx, text string) (string, error) {
-	role, rest, _ := strings.Cut(text, " ")
-	if role != RoleRotD50 && role != RoleRotD100 {
-		return text, nil
-	}
-	parts := strings.SplitN(rest, " ", 3)
-	for i := range min(2, len(parts)) {
-		var of string
-		if err := g.part.tx.QueryRowContext(ctx, `SELECT coalesce((SELECT inputs FROM computation WHERE id = ?), '')`, parts[i]).Scan(&of); err != nil {
-			return "", err
+// madeOf are the inputs of the computations that a pair's inputs name.
+func (p *Part) madeOf(ctx context.Context, inputs string) (of []string, err error) {
+	_, ids, _ := pairOf(inputs)
+	for _, id := range ids {
+		var text string
+		if err := p.tx.QueryRowContext(ctx, `SELECT coalesce((SELECT inputs FROM computation WHERE id = ?), '')`, id).Scan(&text); err != nil {
+			return nil, err
 		}
-		id, err := t.idOf(ctx, `SELECT id FROM computation WHERE generation_id = ? AND inputs = ?`, g.generation, of)
-		if err != nil || id == 0 {
-			return "", err
-		}
-		parts[i] = strconv.FormatInt(id, 10)
+		of = append(of, text)
 	}
-	return role + " " + strings.Join(parts, " "), nil
+	return of, nil
+}
+
+// pairOf takes a pair's inputs apart: the role, the numbers of its components' computations,
+// and the rest. Of a component's inputs there are no numbers.
+func pairOf(inputs string) (role string, ids []string, rest string) {
+	parts := strings.SplitN(inputs, " ", 4)
+	if len(parts) < 4 || parts[0] != RoleRotD50 && parts[0] != RoleRotD100 {
+		return "", nil, inputs
+	}
+	return parts[0], parts[1:3], parts[3]
+}
+
+// heldComputation is what a store has of a shard's computation: its number, 0 for none, and
+// its inputs there, which of a pair name the computations of its components, and are "" where
+// one of these is not there.
+func heldComputation(ctx context.Context, q queryer, generation int64, c *partComputation) (held partComputation, err error) {
+	const byInputs = `SELECT id FROM computation WHERE generation_id = ? AND inputs = ?`
+	role, _, rest := pairOf(c.inputs)
+	if held.inputs = c.inputs; role != "" {
+		held.inputs = role
+		for _, of := range c.of {
+			id, err := idOf(ctx, q, byInputs, generation, of)
+			if err != nil || id == 0 {
+				return partComputation{}, err
+			}
+			held.inputs += " " + strconv.FormatInt(id, 10)
+		}
+		held.inputs += " " + rest
+	}
+	held.id, err = idOf(ctx, q, byInputs, generation, held.inputs)
+	return held, err
 }
 
 // spectra reads what was computed. Of spectra that are not what was stored the first, and all
