@@ -239,7 +239,7 @@ func (c *combining) replayFrom(ctx context.Context, key db.IntakeKey) error {
 		key = found[len(found)-1].IntakeKey
 		err = stage[[]db.Intake, result]{
 			workers: c.opts.Workers, clock: c.opts.Clock, process: replayed,
-			weigh: func(res result) int { return max(1, len(res.channels)) }, store: c.storeBatch,
+			weigh: weightOf, store: c.storeBatch,
 		}.run(ctx, slices.Values(byFile(found)))
 		if err != nil {
 			return err

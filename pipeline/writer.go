@@ -35,8 +35,17 @@ func newWriter(store Store, run state, opts Options, src *source) *writer {
 func (w *writer) files(ctx context.Context) error {
 	return stage[item, result]{
 		workers: w.opts.Workers, clock: w.opts.Clock, process: w.run.reader.process,
-		weigh: func(res result) int { return max(1, len(res.channels)) }, store: w.storeBatch,
+		weigh: weightOf, store: w.storeBatch,
 	}.run(ctx, w.source.items(ctx))
+}
+
+// weightOf is what a result weighs in a batch. Of a file that is left to another shard hardly
+// anything is written, so that a batch is a second of them.
+func weightOf(res result) int {
+	if res.outcome == Elsewhere {
+		return 0
+	}
+	return max(1, len(res.channels))
 }
 
 // storeBatch stores the results in one transaction and reports them once it is
