@@ -9,6 +9,7 @@ import (
 	"slices"
 	"strings"
 	"testing"
+	"time"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -127,6 +128,31 @@ func TestDamagedShards(t *testing.T) {
 				t.Errorf("%s: another result", c.damage)
 			}
 		}
+	}
+}
+
+// TestEventsOfFormerRunsStay holds that a shard keeps what documents said when files come later
+// that have none beside them.
+func TestEventsOfFormerRunsStay(t *testing.T) {
+	store, opts := newStore(t), options(recordFiles(t, 1))
+	opts.Shard = db.Shard{Number: 1, Count: 1}
+	first := &ingest.Metadata{}
+	place := ingest.Event{ID: "1", Origin: time.Date(2040, 1, 2, 3, 4, 5, 0, time.UTC), Latitude: ingest.Known(10), Longitude: ingest.Known(20)}
+	first.Tell([]ingest.CatalogueEvent{{PublicID: "quake/1", Event: place}, {PublicID: "quake/2", Event: place}})
+	opts.Hints.Metadata = first
+	run(t, store, opts)
+	opts.Hints.Metadata = &ingest.Metadata{}
+	opts.Hints.Metadata.Withdraw("quake/2", time.Time{})
+	run(t, store, opts)
+	err := store.Update(t.Context(), func(tx *db.Tx) error {
+		m, err := eventsOf(t.Context(), tx)
+		if events := m.Events(); err == nil && (len(events) != 1 || !reflect.DeepEqual(events, first.Events()[:1])) {
+			t.Errorf("events %+v", events)
+		}
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
 	}
 }
 

@@ -66,12 +66,21 @@ type saidEvents struct {
 	Withdrawn map[string]time.Time
 }
 
-// keepEvents keeps what documents say of earthquakes, in a shard.
+// keepEvents keeps what documents say of earthquakes, in a shard, beside what those of former
+// runs said.
 func keepEvents(ctx context.Context, tx *db.Tx, opts Options) error {
 	if opts.Shard.Count == 0 {
 		return nil
 	}
-	said, err := json.Marshal(saidEvents{opts.Hints.Metadata.Events(), opts.Hints.Metadata.Withdrawn()})
+	kept, err := eventsOf(ctx, tx)
+	if err != nil {
+		return err
+	}
+	kept.Tell(opts.Hints.Metadata.Events())
+	for id, at := range opts.Hints.Metadata.Withdrawn() {
+		kept.Withdraw(id, at)
+	}
+	said, err := json.Marshal(saidEvents{kept.Events(), kept.Withdrawn()})
 	if err != nil {
 		return fmt.Errorf("write down events: %w", err)
 	}
