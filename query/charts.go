@@ -13,9 +13,9 @@ import (
 // Chart is the answer as a chart of all spectra with their statistics: it needs Each.
 func (a *SpectrumAnswer) Chart(units Units, marks []chart.Mark, isLinear bool) *chart.Spectra {
 	unit, _, per := a.Measure.unitOf(units)
-	quantity := fmt.Sprintf("%s (%s)", strings.ToUpper(string(a.Measure)), unit)
-	if a.Measure.isRatio() {
-		quantity = a.Measure.title()
+	quantity := a.Measure.short()
+	if !a.Measure.isRatio() {
+		quantity += " (" + unit + ")"
 	}
 	c := &chart.Spectra{
 		Title: fmt.Sprintf("%s, damping %s", a.Measure.title(), percentText(a.Damping)),

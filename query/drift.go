@@ -2,6 +2,7 @@ package query
 
 import (
 	"cmp"
+	"fmt"
 	"math"
 	"slices"
 )
@@ -10,6 +11,42 @@ import (
 type Drift struct {
 	Of, Name      string
 	Before, After float64
+
+	told quantityUnit
+}
+
+// DriftWords are a drift for people, in the words, digits and units of tables.
+type DriftWords struct{ Of, Figure, Before, After, Unit, Change string }
+
+// Words tells the drift in units.
+func (d Drift) Words(units Units) DriftWords {
+	unit, per := d.told.in(units)
+	w := DriftWords{Of: printable(d.told.title), Figure: d.Name, Unit: unit, Change: "lost, or from 0"}
+	if d.Name == figureCount {
+		w.Before, w.After = orNone(d.Before, wholeNumber), orNone(d.After, wholeNumber)
+	} else {
+		w.Before, w.After = apart(d.Before/per, d.After/per)
+	}
+	if r := d.Ratio(); isDefined(r) {
+		w.Change = fmt.Sprintf("%+.3g %%", 100*r)
+	}
+	return w
+}
+
+// apart writes two numbers as tables do or, where they would look alike, in more digits.
+func apart(a, b float64) (string, string) {
+	if x, y := orNone(a, figure), orNone(b, figure); x != y {
+		return x, y
+	}
+	return fmt.Sprintf("%.9g", a), fmt.Sprintf("%.9g", b)
+}
+
+// orNone writes a number, or that there is none.
+func orNone(x float64, write func(float64) string) string {
+	if !isDefined(x) {
+		return "none"
+	}
+	return write(x)
 }
 
 // Ratio is the change relative to the value before: 0 for none, infinite where the value
@@ -44,7 +81,7 @@ func Drifts(before, after []Figure) []Drift {
 	}
 	var out []Drift
 	for _, f := range before {
-		d := Drift{Of: f.Of, Name: f.Name, Before: f.Value, After: math.NaN()}
+		d := Drift{Of: f.Of, Name: f.Name, Before: f.Value, After: math.NaN(), told: f.told}
 		if value, ok := now[key{f.Of, f.Name}]; ok {
 			d.After = value
 		}

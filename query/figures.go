@@ -10,27 +10,43 @@ type Figure struct {
 	Of    string // period, quantity or structure, with its unit
 	Name  string // p50 and the like, or count
 	Value float64
+
+	// told is what it is of in the words of tables, with the unit that they have it in.
+	told quantityUnit
 }
 
 // figureCount is the name of the number of motions.
 const figureCount = "count"
 
 // figuresOf are the percentiles and the count of a reduction.
-func figuresOf(out []Figure, of string, percents []float64, r *Reduction) []Figure {
+func figuresOf(out []Figure, of string, told quantityUnit, percents []float64, r *Reduction) []Figure {
 	if r == nil {
 		return out
 	}
 	for i, p := range percents {
-		out = append(out, Figure{of, "p" + percentKey(p), r.Percentiles[i]})
+		out = append(out, Figure{of, "p" + percentKey(p), r.Percentiles[i], told})
 	}
-	return append(out, Figure{of, figureCount, float64(r.Count)})
+	return append(out, Figure{of, figureCount, float64(r.Count), plain(told.title)})
 }
+
+// of is the quantity of a structure.
+func (u quantityUnit) of(s *PortfolioStructure) quantityUnit {
+	u.title = s.words() + ": " + u.title
+	return u
+}
+
+// plain is what has no unit.
+func plain(title string) quantityUnit { return quantityUnit{title: title, perSI: 1, perUS: 1} }
 
 // Figures are those of all periods.
 func (a *SpectrumAnswer) Figures() (out []Figure) {
-	_, unit, _ := a.Measure.unitOf(UnitsSI)
+	var told quantityUnit
+	var unit string
+	told.si, unit, told.perSI = a.Measure.unitOf(UnitsSI)
+	told.us, _, told.perUS = a.Measure.unitOf(UnitsUS)
 	for i := range a.Reductions {
-		out = figuresOf(out, fmt.Sprintf("%s_%s at %g s", a.Measure, unit, a.PeriodsS[i]), a.Percentiles, &a.Reductions[i])
+		told.title = fmt.Sprintf("%s at %s s, damping %s", a.Measure.short(), figure(a.PeriodsS[i]), percentText(a.Damping))
+		out = figuresOf(out, fmt.Sprintf("%s_%s at %g s", a.Measure, unit, a.PeriodsS[i]), told, a.Percentiles, &a.Reductions[i])
 	}
 	return out
 }
@@ -42,7 +58,7 @@ func (a *DemandAnswer) Figures() (out []Figure) {
 		quantities = a.Band.Quantities
 	}
 	for _, q := range quantities {
-		out = figuresOf(out, q.Name, a.Percentiles, q.Reduction)
+		out = figuresOf(out, q.Name, quantityUnits[q.Name], a.Percentiles, q.Reduction)
 	}
 	return out
 }
@@ -54,13 +70,13 @@ var demands = []string{"sd_m", "base_shear_n", "base_moment_nm"}
 // the band where there is one.
 func (a *PortfolioAnswer) Figures() (out []Figure) {
 	for i := range a.Rows {
-		quantities := a.Rows[i].Quantities
+		s, quantities := a.Rows[i].Structure, a.Rows[i].Quantities
 		if a.Rows[i].Band != nil {
 			quantities = a.Rows[i].Band.Quantities
 		}
 		for _, q := range quantities {
 			if slices.Contains(demands, q.Name) {
-				out = figuresOf(out, a.Rows[i].Structure.ID+" "+q.Name, a.Percentiles, q.Reduction)
+				out = figuresOf(out, s.ID+" "+q.Name, quantityUnits[q.Name].of(s), a.Percentiles, q.Reduction)
 			}
 		}
 	}
@@ -69,9 +85,10 @@ func (a *PortfolioAnswer) Figures() (out []Figure) {
 
 // Figures are the estimates for all structures.
 func (a *NearestAnswer) Figures() (out []Figure) {
-	for _, row := range a.Rows {
-		for _, e := range row.Estimates {
-			out = append(out, Figure{row.Structure.ID + " " + e.Name, "estimate", e.Value})
+	for i := range a.Rows {
+		s := a.Rows[i].Structure
+		for _, e := range a.Rows[i].Estimates {
+			out = append(out, Figure{s.ID + " " + e.Name, "estimate", e.Value, quantityUnits[e.Name].of(s)})
 		}
 	}
 	return out
@@ -79,7 +96,7 @@ func (a *NearestAnswer) Figures() (out []Figure) {
 
 // Figures are the number of components in the list.
 func (a *RecordsAnswer) Figures() []Figure {
-	return []Figure{{"components", figureCount, float64(len(a.Rows))}}
+	return []Figure{{"components", figureCount, float64(len(a.Rows)), plain("components")}}
 }
 
 // Compared is an answer that can be compared with that to the same question at another

@@ -3,6 +3,7 @@ package query
 import (
 	"fmt"
 	"io"
+	"strings"
 
 	"swaybook/pipeline/spectrum"
 )
@@ -42,6 +43,14 @@ func (m Measure) title() string {
 		return "Spectrum over that of 5% damping"
 	}
 	return "Spectral displacement SD"
+}
+
+// short names a measure by its letters, but for ratios.
+func (m Measure) short() string {
+	if m.isRatio() {
+		return m.title()
+	}
+	return strings.ToUpper(string(m))
 }
 
 // Write renders the answer. The error is a UsageError for an unknown format and

@@ -26,10 +26,7 @@ func (a *PortfolioAnswer) WorstFirst() *PortfolioAnswer {
 // every quantity, and the ratios to its capacities.
 func (r *PortfolioRow) Sheet(a *PortfolioAnswer, units Units) *Sheet {
 	s := r.Structure
-	out := &Sheet{Title: printable(s.ID), Lines: []string{s.text(units)}}
-	if s.Name != "" {
-		out.Title += ", " + printable(s.Name)
-	}
+	out := &Sheet{Title: printable(s.words()), Lines: []string{s.text(units)}}
 	list := statisticsOf(&a.Selection, a.Percentiles, a.Extras)
 	at := r.statistics(r.Quantities, list, &a.Selection, units)
 	out.Tables = append(out.Tables, at.export("At the period"))
@@ -45,6 +42,14 @@ func (r *PortfolioRow) Sheet(a *PortfolioAnswer, units Units) *Sheet {
 		out.Tables = append(out.Tables, limits.export("Demand over capacity"))
 	}
 	return out
+}
+
+// words name a structure.
+func (s *PortfolioStructure) words() string {
+	if s.Name == "" {
+		return s.ID
+	}
+	return s.ID + ", " + s.Name
 }
 
 // statistics has a row a quantity that is known.

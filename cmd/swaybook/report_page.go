@@ -217,13 +217,14 @@ func spectrumOf(r reply) (a *query.SpectrumAnswer, units query.Units, ok bool) {
 // tables are the changes, and what happened to the motions.
 func (d *driftReport) tables() (out []report.Table) {
 	changes := query.Table{Caption: "Greatest changes", Columns: []query.Column{
-		{Name: "product", IsWord: true}, {Name: "of", IsWord: true}, {Name: "figure", IsWord: true}, {Name: "before"}, {Name: "after"}, {Name: "change"}}}
+		{Name: "product", IsWord: true}, {Name: "of", IsWord: true}, {Name: "figure", IsWord: true}, {Name: "before"}, {Name: "after"}, {Name: "unit", IsWord: true}, {Name: "change"}}}
 	causes := query.Table{Caption: "What happened to motions", Columns: []query.Column{
 		{Name: "product", IsWord: true}, {Name: "cause", IsWord: true}, {Name: "motions"}, {Name: "first of them", IsWord: true}}}
 	for i := range d.Products {
 		one := &d.Products[i]
 		for _, f := range one.Largest[:min(len(one.Largest), shownFigures)] {
-			changes.Rows = append(changes.Rows, []string{one.Product, f.Of, f.Figure, numberWords(f.Before), numberWords(f.After), changeWords(f.Change)})
+			w := &f.words
+			changes.Rows = append(changes.Rows, []string{one.Product, w.Of, w.Figure, w.Before, w.After, w.Unit, w.Change})
 		}
 		for _, c := range one.Causes {
 			causes.Rows = append(causes.Rows, []string{one.Product, c.Cause, strconv.Itoa(c.Count), strings.Join(c.Codes[:min(len(c.Codes), shownFigures)], ", ")})

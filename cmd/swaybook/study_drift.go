@@ -3,7 +3,6 @@ package main
 import (
 	"cmp"
 	"context"
-	"fmt"
 	"math"
 	"slices"
 	"strconv"
@@ -46,6 +45,8 @@ type figureDrift struct {
 	After  *float64 `json:"after"`
 	Change *float64 `json:"change"` // ratio, null for one without limit: lost, or from 0
 	Beyond bool     `json:"is_beyond"`
+
+	words query.DriftWords // in the units of the question
 }
 
 // driftCause is what happened to motions of the selection.
@@ -131,7 +132,7 @@ func (c *comparison) product(ctx context.Context, p *product) error {
 			out.Beyond++
 		}
 		if len(out.Largest) < maxFigures {
-			out.Largest = append(out.Largest, figureDrift{d.Of, d.Name, finite(d.Before), finite(d.After), finite(d.Ratio()), isBeyond})
+			out.Largest = append(out.Largest, figureDrift{d.Of, d.Name, finite(d.Before), finite(d.After), finite(d.Ratio()), isBeyond, d.Words(before.units())})
 		}
 	}
 	out.Causes = c.causes(was.Motions(), is.Motions())
@@ -151,6 +152,14 @@ func (r reply) compared() query.Compared {
 		return unmeasured{}
 	}
 	return r.answer
+}
+
+// units are those of the question, SI where it has none.
+func (r reply) units() query.Units {
+	if of, ok := r.answer.(inUnits); ok {
+		return of.units
+	}
+	return query.UnitsSI
 }
 
 // finite is a number for JSON, nil where that has none.
@@ -304,7 +313,7 @@ func (p *productDrift) print(out *printer, bound *float64) {
 	}
 	out.printf("\n")
 	for _, f := range p.Largest[:min(len(p.Largest), shownFigures)] {
-		out.printf("    %-28s %-6s %11s to %-11s %s\n", f.Of, f.Figure, numberWords(f.Before), numberWords(f.After), changeWords(f.Change))
+		out.printf("    %-28s %-6s %11s to %-11s %s\n", f.Of, f.Figure, numberWords(f.Before), numberWords(f.After), f.words.Change)
 	}
 	for _, c := range p.Causes {
 		out.printf("    %s: motions %d, first %s\n", c.Cause, c.Count, c.Codes[0])
@@ -318,11 +327,4 @@ func numberWords(x *float64) string {
 		return "none"
 	}
 	return strconv.FormatFloat(*x, 'g', 6, 64)
-}
-
-func changeWords(x *float64) string {
-	if x == nil {
-		return "lost, or from 0"
-	}
-	return fmt.Sprintf("%+.3g %%", 100**x)
 }
