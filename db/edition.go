@@ -178,6 +178,11 @@ func (t *Tx) PublishedEdition(ctx context.Context) (e Edition, ok bool, err erro
 	return editionBy(ctx, t.tx, isPublished)
 }
 
+// HeldEdition returns the newest edition where it is held back; ok is false where it is not.
+func (s *Store) HeldEdition(ctx context.Context) (e Edition, ok bool, err error) {
+	return editionBy(ctx, s.read, `id = (SELECT max(id) FROM edition) AND state = ?`, EditionHeld)
+}
+
 // editionBy returns the edition that meets a condition.
 func editionBy(ctx context.Context, q queryer, condition string, args ...any) (e Edition, ok bool, err error) {
 	rows, err := q.QueryContext(ctx, `SELECT id, generation_id, state FROM edition WHERE `+condition, args...)

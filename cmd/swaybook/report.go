@@ -94,7 +94,7 @@ func writeReport(ctx context.Context, store *db.Store, plan *studyPlan, file str
 		return err
 	}
 	o := &outputs{store: store, answers: map[string]reply{}}
-	page := plan.page(o, nil)
+	page := plan.page(o, nil, 0)
 	r, err := o.ask(ctx, &page, moment{run: published})
 	if err != nil {
 		return err

@@ -37,8 +37,11 @@ type paginator struct {
 	plan    *studyPlan
 	outputs *outputs
 	edition int64
-	drift   *driftReport // since the edition before; nil where it is not known yet
+	known   *driftReport // between two editions; nil for none
 	names   report.Names
+
+	drift *driftReport // since the edition before
+	held  int64        // the edition that is held back, 0 for none
 }
 
 // page is the report. The edition before it, by which drift is told, is the last that is
@@ -53,7 +56,7 @@ func (m *paginator) page(ctx context.Context) (*report.Page, error) {
 	for i := range m.plan.products {
 		p.Sections = append(p.Sections, m.product(&m.plan.products[i]))
 	}
-	for _, add := range []func(context.Context, *report.Page, *db.RunDetails) error{m.addGoverning, m.addRecords, m.addRejections, m.addDrift, m.addMethods, m.addProvenance} {
+	for _, add := range []func(context.Context, *report.Page, *db.RunDetails) error{m.addHeld, m.addGoverning, m.addRecords, m.addRejections, m.addDrift, m.addMethods, m.addProvenance} {
 		if err := add(ctx, p, run); err != nil {
 			return nil, err
 		}
@@ -132,12 +135,15 @@ func (m *paginator) addRecords(ctx context.Context, p *report.Page, run *db.RunD
 	if err != nil {
 		return err
 	}
-	held := a.Held()
+	held, state := a.Held(), fmt.Sprintf("edition %d, by a run of %s", m.edition, run.Started.UTC().Format(time.DateTime+" UTC"))
+	if m.held != 0 {
+		state += fmt.Sprintf("; edition %d is held back", m.held)
+	}
 	p.Summary = []report.Fact{
 		{Name: "records", Value: fmt.Sprintf("%d of %d earthquakes at %d stations", held.Records, held.Events, held.Stations)},
 		{Name: "components", Value: strconv.Itoa(held.Components)},
 		{Name: "recipe", Value: run.Generation.Recipe.Name},
-		{Name: "state of the store", Value: fmt.Sprintf("edition %d, by a run of %s", m.edition, run.Started.UTC().Format(time.DateTime+" UTC"))},
+		{Name: "state of the store", Value: state},
 	}
 	s := report.Of(m.names.ID("quality"), a.Quality())
 	s.Figures = report.Drawn("Magnitude and distance of the records.", a.Chart(), chart.Half)
@@ -168,8 +174,8 @@ func (m *paginator) addDrift(ctx context.Context, p *report.Page, run *db.RunDet
 		p.Sections = append(p.Sections, s)
 		return nil
 	}
-	if m.drift == nil || m.drift.Since != run.Before {
-		var err error
+	var err error
+	if m.drift = m.known; !m.drift.isOf(m.edition, run.Before) {
 		if m.drift, _, err = m.outputs.drift(ctx, m.plan.asked(), m.edition, run.Before, nil, func(int, int) {}); err != nil {
 			return err
 		}
@@ -215,27 +221,43 @@ func spectrumOf(r reply) (a *query.SpectrumAnswer, units query.Units, ok bool) {
 }
 
 // tables are the changes, and what happened to the motions.
-func (d *driftReport) tables() (out []report.Table) {
-	changes := query.Table{Caption: "Greatest changes", Columns: []query.Column{
-		{Name: "product", IsWord: true}, {Name: "of", IsWord: true}, {Name: "figure", IsWord: true}, {Name: "before"}, {Name: "after"}, {Name: "unit", IsWord: true}, {Name: "change"}}}
-	causes := query.Table{Caption: "What happened to motions", Columns: []query.Column{
-		{Name: "product", IsWord: true}, {Name: "cause", IsWord: true}, {Name: "motions"}, {Name: "first of them", IsWord: true}}}
-	for i := range d.Products {
-		one := &d.Products[i]
-		for _, f := range one.Largest[:min(len(one.Largest), shownFigures)] {
-			w := &f.words
-			changes.Rows = append(changes.Rows, []string{one.Product, w.Of, w.Figure, w.Before, w.After, w.Unit, w.Change})
-		}
-		for _, c := range one.Causes {
-			causes.Rows = append(causes.Rows, []string{one.Product, c.Cause, strconv.Itoa(c.Count), strings.Join(c.Codes[:min(len(c.Codes), shownFigures)], ", ")})
-		}
-	}
-	for _, t := range []query.Table{changes, causes} {
+func (d *driftReport) tables() []report.Table {
+	return shownTables(report.LongRows, d.figures("Greatest changes", func(p *productDrift) []figureDrift { return p.Largest[:min(len(p.Largest), shownFigures)] }), d.motions())
+}
+
+// shownTables are those that have rows, closed at first where there are more than most.
+func shownTables(most int, tables ...query.Table) (out []report.Table) {
+	for _, t := range tables {
 		if len(t.Rows) > 0 {
-			out = append(out, report.Table{Table: t})
+			out = append(out, report.Table{Table: t, IsLong: len(t.Rows) > most})
 		}
 	}
 	return out
+}
+
+// figures lists changes of each product.
+func (d *driftReport) figures(caption string, of func(*productDrift) []figureDrift) query.Table {
+	t := query.Table{Caption: caption, Columns: []query.Column{
+		{Name: "product", IsWord: true}, {Name: "of", IsWord: true}, {Name: "figure", IsWord: true}, {Name: "before"}, {Name: "after"}, {Name: "unit", IsWord: true}, {Name: "change"}}}
+	for i := range d.Products {
+		for _, f := range of(&d.Products[i]) {
+			w := &f.words
+			t.Rows = append(t.Rows, []string{d.Products[i].Product, w.Of, w.Figure, w.Before, w.After, w.Unit, w.Change})
+		}
+	}
+	return t
+}
+
+// motions lists what happened to them.
+func (d *driftReport) motions() query.Table {
+	t := query.Table{Caption: "What happened to motions", Columns: []query.Column{
+		{Name: "product", IsWord: true}, {Name: "cause", IsWord: true}, {Name: "motions"}, {Name: "first of them", IsWord: true}}}
+	for i := range d.Products {
+		for _, c := range d.Products[i].Causes {
+			t.Rows = append(t.Rows, []string{d.Products[i].Product, c.Cause, strconv.Itoa(c.Count), strings.Join(c.Codes[:min(len(c.Codes), shownFigures)], ", ")})
+		}
+	}
+	return t
 }
 
 func (m *paginator) addMethods(_ context.Context, p *report.Page, run *db.RunDetails) error {

@@ -101,10 +101,13 @@ func decidedBy(s *study.Study) string {
 	return d.sum()
 }
 
-// pageBy is the digest of all that a report is made of beside the store.
-func pageBy(p *studyPlan) string {
+// pageBy is the digest of all that a report is made of beside what is published.
+func pageBy(p *studyPlan, held int64) string {
 	d := &digester{}
-	d.add(program(), p.study.File, p.study.Name.Value, p.study.Purpose.Value)
+	d.add(program(), p.study.File, p.study.Name.Value, p.study.Purpose.Value, held)
+	if p.study.MaxDrift != nil {
+		d.add(*p.study.MaxDrift)
+	}
 	for _, one := range p.products {
 		d.add(one.path, one.asked)
 	}

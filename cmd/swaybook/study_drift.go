@@ -35,6 +35,8 @@ type productDrift struct {
 	Beyond  int           `json:"beyond"`
 	Largest []figureDrift `json:"largest"`
 	Causes  []driftCause  `json:"causes"`
+
+	worst []figureDrift // those beyond the bound, as many as a report shows
 }
 
 // figureDrift is one figure, in the unit that of names, null where there is none.
@@ -128,11 +130,15 @@ func (c *comparison) product(ctx context.Context, p *product) error {
 	for _, d := range query.Drifts(figures, is.Figures()) {
 		isBeyond := c.bound != nil && d.Loss() > *c.bound
 		out.Changed++
+		one := figureDrift{d.Of, d.Name, finite(d.Before), finite(d.After), finite(d.Ratio()), isBeyond, d.Words(before.units())}
+		if len(out.Largest) < maxFigures {
+			out.Largest = append(out.Largest, one)
+		}
 		if isBeyond {
 			out.Beyond++
-		}
-		if len(out.Largest) < maxFigures {
-			out.Largest = append(out.Largest, figureDrift{d.Of, d.Name, finite(d.Before), finite(d.After), finite(d.Ratio()), isBeyond, d.Words(before.units())})
+			if len(out.worst) < shownFigures {
+				out.worst = append(out.worst, one)
+			}
 		}
 	}
 	out.Causes = c.causes(was.Motions(), is.Motions())
@@ -171,11 +177,14 @@ func finite(x float64) *float64 {
 }
 
 // greatest is the greatest change of a product, infinite where there is no limit to it.
-func (p *productDrift) greatest() float64 {
-	if len(p.Largest) == 0 {
+func (p *productDrift) greatest() float64 { return greatestOf(p.Largest) }
+
+// greatestOf is the first of changes.
+func greatestOf(changes []figureDrift) float64 {
+	if len(changes) == 0 {
 		return 0
 	}
-	if x := p.Largest[0].Change; x != nil {
+	if x := changes[0].Change; x != nil {
 		return math.Abs(*x)
 	}
 	return math.Inf(1)

@@ -36,18 +36,19 @@ type studyPlan struct {
 func (p *studyPlan) asked() []product { return slices.Concat(p.products, p.watched) }
 
 // written are the products, and last the report, which is made of their answers: of those
-// among the outputs, where these are of the same edition, and of the drift, where it is known.
-func (p *studyPlan) written(o *outputs, drift *driftReport) []product {
+// among the outputs, where these are of the same edition, and of a drift, where it is known. It
+// tells of an edition that is held back, 0 for none.
+func (p *studyPlan) written(o *outputs, known *driftReport, held int64) []product {
 	if p.study.Report.Value == "" {
 		return p.products
 	}
-	return append(slices.Clip(p.products), p.page(o, drift))
+	return append(slices.Clip(p.products), p.page(o, known, held))
 }
 
 // page is the report as a product.
-func (p *studyPlan) page(o *outputs, drift *driftReport) product {
+func (p *studyPlan) page(o *outputs, known *driftReport, held int64) product {
 	return product{
-		path: "report", asked: pageBy(p), files: []outputFile{{p.study.Report.Value, study.HTML}},
+		path: "report", asked: pageBy(p, held), files: []outputFile{{p.study.Report.Value, study.HTML}},
 		ask: func(ctx context.Context, _ *db.Store, at moment) (answer, error) {
 			asked := p.asked()
 			for i := range asked {
@@ -60,7 +61,7 @@ func (p *studyPlan) page(o *outputs, drift *driftReport) product {
 				}
 				o.answers[asked[i].path] = r
 			}
-			m := &paginator{plan: p, outputs: o, edition: at.run, drift: drift}
+			m := &paginator{plan: p, outputs: o, edition: at.run, known: known}
 			page, err := m.page(ctx)
 			return pageOf{Page: page}, err
 		},

@@ -116,7 +116,11 @@ func (r *studyRun) follow(ctx context.Context, done pipeline.Reprocessed, before
 	if done.Damaged > 0 {
 		return fmt.Errorf("%s is damaged (records: %d)", r.plan.study.Store.Value, done.Damaged)
 	}
-	written := r.plan.written(r.outputs, nil)
+	held := int64(0)
+	if done.IsHeld {
+		held = done.Edition
+	}
+	written := r.plan.written(r.outputs, r.state.Drift, held)
 	if err := r.outputs.refresh(ctx, written, done.Published); err != nil {
 		return err
 	}
@@ -188,7 +192,7 @@ func (r *studyRun) approve(ctx context.Context, edition, published int64) (bool,
 			return false, nil
 		}
 	}
-	written := r.plan.written(r.outputs, r.state.Drift)
+	written := r.plan.written(r.outputs, r.state.Drift, 0)
 	for i := range written {
 		p := &written[i]
 		answer, ok := r.outputs.answers[p.path]

@@ -18,6 +18,7 @@ type Page struct {
 	Title, Purpose string
 	Summary        []Fact // at the top
 	Caution        string
+	Notice         *Section // at the top, before all else; nil for none
 	Sections       []Section
 	Provenance     []Fact // at the end: by what the page was made, of what
 }
