@@ -69,13 +69,15 @@ func (a *DemandAnswer) Sheet(units Units) *Sheet {
 // Sheet is the answer's table.
 func (a *PortfolioAnswer) Sheet(units Units) *Sheet {
 	t := a.rows(units)
-	return sheetOf(a.title(), &a.Selection, a.Error.remark()+a.tableRemarks()+a.Selection.Remarks(), t.export(""))
+	return sheetOf(a.title(), &a.Selection, a.Error.remark()+a.tableRemarks()+a.Selection.Remarks(),
+		named(t.export(""), func(i int) *PortfolioStructure { return a.Rows[i].Structure }))
 }
 
 // Sheet is the answer's table.
 func (a *NearestAnswer) Sheet(units Units) *Sheet {
 	t := a.rows(units)
-	return sheetOf(a.title(), &a.Selection, a.Error.remark()+a.Selection.Remarks(), t.export(""))
+	return sheetOf(a.title(), &a.Selection, a.Error.remark()+a.Selection.Remarks(),
+		named(t.export(""), func(i int) *PortfolioStructure { return a.Rows[i].Structure }))
 }
 
 // Sheet is the answer's table, and what was found in which rows.

@@ -22,6 +22,19 @@ func (a *PortfolioAnswer) WorstFirst() *PortfolioAnswer {
 	return &out
 }
 
+// named puts the names of structures behind their codes, in the table of many of them, where
+// any has one: people look for names, and text has no room for them.
+func named(t Table, of func(row int) *PortfolioStructure) Table {
+	if !slices.ContainsFunc(upTo(len(t.Rows)), func(i int) bool { return of(i).Name != "" }) {
+		return t
+	}
+	t.Columns = slices.Insert(t.Columns, 1, Column{Name: "name", IsWord: true})
+	for i := range t.Rows {
+		t.Rows[i] = slices.Insert(t.Rows[i], 1, printable(of(i).Name))
+	}
+	return t
+}
+
 // Sheet is all that the answer says of one structure: of what was asked, the statistics of
 // every quantity, and the ratios to its capacities.
 func (r *PortfolioRow) Sheet(a *PortfolioAnswer, units Units) *Sheet {

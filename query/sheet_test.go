@@ -36,3 +36,22 @@ func TestBandOfWhatIsSupported(t *testing.T) {
 		t.Errorf("the band is %+v", c.Band)
 	}
 }
+
+// TestSheetsHaveNames: a sheet of many structures has the names of those that have one beside
+// the codes, and no column where none has.
+func TestSheetsHaveNames(t *testing.T) {
+	for names, want := range map[[2]string]string{{"Quay", ""}: "name", {"", ""}: "period"} {
+		a := &PortfolioAnswer{}
+		b := &NearestAnswer{}
+		for i, name := range names {
+			s := &PortfolioStructure{ID: string("AB"[i]), Name: name}
+			a.Rows, b.Rows = append(a.Rows, PortfolioRow{Structure: s}), append(b.Rows, NearestRow{Structure: s})
+		}
+		for _, sheet := range []*Sheet{a.Sheet(UnitsSI), b.Sheet(UnitsSI)} {
+			table := sheet.Tables[0]
+			if table.Columns[1].Name != want || len(table.Rows[1]) != len(table.Columns) || want == "name" && (table.Rows[0][1] != "Quay" || table.Rows[1][1] != "") {
+				t.Errorf("names %q: columns %v, rows %q", names, table.Columns, table.Rows)
+			}
+		}
+	}
+}

@@ -245,6 +245,11 @@ func sortsAndFilters(ctx context.Context, t *testing.T) {
 	if got, count := ids(), texts(ctx, t, "#demand-stock .filter span")[0]; got != "P10" || count != "1 of 4" {
 		t.Errorf("filtered: %s, %s", got, count)
 	}
+	evaluated[bool](ctx, t, `document.querySelector("#demand-stock input").select(), true`)
+	do(ctx, t, chromedp.SendKeys(chromedp.CSS("#demand-stock input"), "old one"))
+	if got := ids(); got != "T1" {
+		t.Errorf("filtered by name: %s", got)
+	}
 }
 
 // saysValues moves the pointer over the chart to a period, and goes to others by keys: the

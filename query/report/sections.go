@@ -162,7 +162,7 @@ func Portfolio(id string, a *query.PortfolioAnswer, units query.Units, names Nam
 	a = a.WorstFirst()
 	out := Of(id, a.Sheet(units))
 	out.Tables[0].IsLong, out.Tables[0].HasFilter = false, true
-	comeFirst(&out.Tables[0].Table, "structure", "ratio", "limit", "above")
+	comeFirst(&out.Tables[0].Table, "structure", "name", "ratio", "limit", "above")
 	links := map[string]string{}
 	for i := range a.Rows[:min(len(a.Rows), detailed)] {
 		row := &a.Rows[i]
