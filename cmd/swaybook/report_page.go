@@ -262,7 +262,12 @@ func (d *driftReport) motions() query.Table {
 
 func (m *paginator) addMethods(_ context.Context, p *report.Page, run *db.RunDetails) error {
 	recipe := run.Generation.Recipe
-	p.Sections = append(p.Sections, report.Methods(m.names.ID("methods"), recipe.Name, recipeWords(recipe)))
+	applies, described := condition.Describe(recipe.Steps)
+	var steps []report.Step
+	for _, s := range described {
+		steps = append(steps, report.Step(s))
+	}
+	p.Sections = append(p.Sections, report.Methods(m.names.ID("methods"), recipe.Name, applies, steps))
 	return nil
 }
 
@@ -291,18 +296,6 @@ func (m *paginator) addProvenance(ctx context.Context, p *report.Page, run *db.R
 		{Name: "digest of what is published (verify --digest)", Value: digest},
 	}
 	return nil
-}
-
-// recipeWords are the steps of a recipe in words, none of one that another version wrote.
-func recipeWords(r db.Recipe) (words []string) {
-	recipe, err := condition.FromCanonical(r.Steps)
-	if err != nil {
-		return nil
-	}
-	for _, s := range newRecipeRow(recipe, r.Hash()).Steps {
-		words = append(words, s.Words)
-	}
-	return words
 }
 
 func dampingWords(dampings []float64) string {

@@ -1,6 +1,10 @@
 package report
 
-import "swaybook/query"
+import (
+	"strconv"
+
+	"swaybook/query"
+)
 
 // methods are what every result rests on, with the sources.
 var methods = [][]string{
@@ -15,12 +19,21 @@ var methods = [][]string{
 	{"Usable periods", "A motion counts only at periods at which its filters and its sampling leave something to believe.", "common practice"},
 }
 
-// Methods is the section of how everything was computed. The recipe is told step by step.
-func Methods(id, recipe string, steps []string) Section {
-	t := query.Table{Columns: []query.Column{{Name: "method", IsWord: true}, {Name: "what is done", IsWord: true}, {Name: "source", IsWord: true}}, Rows: methods}
-	s := Section{ID: id, Title: "Methods", Tables: []Table{{Table: t}}, Lines: []string{"Motions are conditioned by the recipe " + recipe + "."}}
-	for _, step := range steps {
-		s.Remarks = append(s.Remarks, recipe+": "+step)
+// Step is a step of a recipe, with the source of what it does.
+type Step struct{ Do, Words, Source string }
+
+// Methods is the section of how everything was computed. The recipe, for which motions its
+// steps are, is told step by step.
+func Methods(id, recipe, applies string, steps []Step) Section {
+	column := func(name string) query.Column { return query.Column{Name: name, IsWord: true} }
+	told := query.Table{Caption: "Recipe " + recipe, Columns: []query.Column{{Name: "no."}, column("step"), column("what is done"), column("source")}}
+	for i, s := range steps {
+		told.Rows = append(told.Rows, []string{strconv.Itoa(i + 1), s.Do, s.Words, s.Source})
 	}
-	return s
+	t := query.Table{Caption: "Methods and their sources", Columns: []query.Column{column("method"), column("what is done"), column("source")}, Rows: methods}
+	out := Section{ID: id, Title: "Methods", Tables: []Table{{Table: t}, {Table: told}}, Lines: []string{"Motions are conditioned by the recipe " + recipe + ", whose steps are for " + applies + "; others are as they were delivered."}}
+	if len(steps) == 0 {
+		out.Tables, out.Lines = out.Tables[:1], []string{"Motions are as they were delivered: the recipe " + recipe + " has no steps."}
+	}
+	return out
 }

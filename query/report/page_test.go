@@ -181,3 +181,22 @@ func TestNothingToDrawIsAnError(t *testing.T) {
 		t.Errorf("error %v", err)
 	}
 }
+
+// TestMethodsHaveSources: each method and each step of the recipe stands beside its source.
+func TestMethodsHaveSources(t *testing.T) {
+	s := Methods("methods", "own", "raw components", []Step{{"taper", "cosine bells", "Tukey 1967"}})
+	text := written(t, &Page{Sections: []Section{s}})
+	if !strings.Contains(text, "<td><bdi>taper</bdi></td><td><bdi>cosine bells</bdi></td><td><bdi>Tukey 1967</bdi></td>") {
+		t.Error("the step is not on the page with its source")
+	}
+	for _, table := range s.Tables {
+		for _, row := range table.Rows {
+			if row[len(row)-1] == "" || table.Columns[len(row)-1].Name != "source" {
+				t.Errorf("%q has no source", row)
+			}
+		}
+	}
+	if bare := Methods("methods", "as-delivered", "no component", nil); len(bare.Tables) != 1 {
+		t.Errorf("a recipe without steps has %d tables", len(bare.Tables))
+	}
+}
