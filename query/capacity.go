@@ -110,15 +110,15 @@ func (l *LimitRatio) text(units Units) string {
 	return figure(l.Limit/per) + " " + name
 }
 
-// capacityTable says how the motions compare with the capacities.
-func (a *DemandAnswer) capacityTable(units Units) table {
+// capacityTable says how the motions compare with capacities, a row each.
+func capacityTable(limits []LimitRatio, percents []float64, units Units) table {
 	t := table{columns: []column{{name: "capacity", isWord: true}, {name: "limit"}, {name: "above"}, {name: "of"}, {name: "share"}}}
-	for _, p := range a.Percentiles {
+	for _, p := range percents {
 		t.columns = append(t.columns, column{name: "p" + percentKey(p) + "/limit"})
 	}
 	t.columns = append(t.columns, column{name: "max/limit"}, column{name: "governing", isWord: true})
-	for i := range a.Limits {
-		l := &a.Limits[i]
+	for i := range limits {
+		l := &limits[i]
 		row := []string{strings.ReplaceAll(l.Name, "_", " "), l.text(units), fmt.Sprint(l.CountAbove), fmt.Sprint(l.Count), percentTitle(l.Above)}
 		for _, x := range l.Percentiles {
 			row = append(row, figure(x))
@@ -129,8 +129,8 @@ func (a *DemandAnswer) capacityTable(units Units) table {
 }
 
 // capacityTitle stands over the table.
-func (a *DemandAnswer) capacityTitle() string {
-	if a.Band != nil {
+func capacityTitle(band *DemandBand) string {
+	if band != nil {
 		return "Beside the capacities, over the band"
 	}
 	return "Beside the capacities"

@@ -41,8 +41,8 @@ func (a *DemandAnswer) table(units Units) []byte {
 		text = t.appendTo(text)
 	}
 	if len(a.Limits) > 0 {
-		text = fmt.Appendf(text, "\n%s\n\n", a.capacityTitle())
-		t = a.capacityTable(units)
+		text = fmt.Appendf(text, "\n%s\n\n", capacityTitle(a.Band))
+		t = capacityTable(a.Limits, a.Percentiles, units)
 		text = t.appendTo(text)
 	}
 	return append(append(text, '\n'), a.Remarks()...)

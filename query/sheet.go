@@ -60,8 +60,8 @@ func (a *DemandAnswer) Sheet(units Units) *Sheet {
 		tables = append(tables, t.export(a.Band.title()))
 	}
 	if len(a.Limits) > 0 {
-		t = a.capacityTable(units)
-		tables = append(tables, t.export(a.capacityTitle()))
+		t = capacityTable(a.Limits, a.Percentiles, units)
+		tables = append(tables, t.export(capacityTitle(a.Band)))
 	}
 	return sheetOf(a.title(units), &a.Selection, a.Selection.Remarks(), tables...)
 }

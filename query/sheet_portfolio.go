@@ -51,8 +51,8 @@ func (r *PortfolioRow) Sheet(a *PortfolioAnswer, units Units) *Sheet {
 		out.Tables = append(out.Tables, over.export(r.Band.title()))
 	}
 	if len(r.Limits) > 0 {
-		limits := r.ratios(a, units)
-		out.Tables = append(out.Tables, limits.export("Demand over capacity"))
+		limits := capacityTable(r.Limits, a.Percentiles, units)
+		out.Tables = append(out.Tables, limits.export(capacityTitle(r.Band)))
 	}
 	return out
 }
@@ -79,32 +79,4 @@ func (r *PortfolioRow) statistics(quantities []Quantity, list []statistic, selec
 		t.add(append(row, selection.governingText(q.Reduction))...)
 	}
 	return t
-}
-
-// ratios has a row a capacity.
-func (r *PortfolioRow) ratios(a *PortfolioAnswer, units Units) table {
-	t := table{columns: []column{{name: "capacity", isWord: true}, {name: "limit"}, {name: "unit", isWord: true}}}
-	for _, p := range a.Percentiles {
-		t.columns = append(t.columns, column{name: "ratio p" + percentKey(p)})
-	}
-	t.columns = append(t.columns, column{name: "greatest"}, column{name: "above"}, column{name: "count"}, column{name: "governing", isWord: true})
-	for _, l := range r.Limits {
-		title, unit, per := limitIn(l.Name, units)
-		row := []string{title, figure(l.Limit / per), unit}
-		for i := range a.Percentiles {
-			row = append(row, figure(l.Percentiles[i]))
-		}
-		t.add(append(row, figure(l.Max), percentTitle(l.Above), fmt.Sprint(l.Count), l.Governing)...)
-	}
-	return t
-}
-
-// limitIn is a capacity for people, with the unit of what it is of.
-func limitIn(name string, units Units) (title, unit string, per float64) {
-	of, ok := limited[name]
-	if !ok {
-		return "displacement over height", "1", 1
-	}
-	unit, per = of.in(units)
-	return of.title, unit, per
 }

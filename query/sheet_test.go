@@ -2,24 +2,33 @@ package query
 
 import (
 	"math"
+	"reflect"
 	"testing"
 
 	"swaybook/query/chart"
 )
 
-// TestLimitsHaveTheUnitsOfDemands: a kip is 4448.2216152605 N, NIST SP 811 (2008), appendix B.
-func TestLimitsHaveTheUnitsOfDemands(t *testing.T) {
-	for _, c := range []struct {
-		name  string
-		units Units
-		unit  string
-		per   float64
-	}{
-		{"displacement", UnitsSI, "m", 1}, {"displacement", UnitsUS, "in", 0.0254},
-		{"base_shear", UnitsSI, "kN", 1000}, {"base_shear", UnitsUS, "kip", 4448.2216152605}, {"drift", UnitsUS, "1", 1},
-	} {
-		if _, unit, per := limitIn(c.name, c.units); unit != c.unit || per != c.per {
-			t.Errorf("%s in %s: one %s is %g", c.name, c.units, unit, per)
+// TestCapacitiesAreToldAlike: beside one structure's demand and beside that of one of many
+// stands the same table. A kip is 4448.2216152605 N, NIST SP 811 (2008), appendix B.
+func TestCapacitiesAreToldAlike(t *testing.T) {
+	limits := []LimitRatio{
+		{Name: "displacement", Limit: 0.0508, Percentiles: []float64{0.5}, Max: 1.25, Above: 0.25, CountAbove: 1, Count: 4, Governing: "R1"},
+		{Name: "drift", Limit: 0.01, Percentiles: []float64{0.2}, Max: 0.5, Count: 4, Governing: "R1"},
+		{Name: "base_shear", Limit: 2 * 4448.2216152605, Percentiles: []float64{2}, Max: 4, Above: 1, CountAbove: 4, Count: 4, Governing: "R2"},
+	}
+	want := [][]string{
+		{"displacement", "2.000 in", "1", "4", "25.0%", "0.5000", "1.250", "R1"},
+		{"drift", "1%", "0", "4", "0.0%", "0.2000", "0.5000", "R1"},
+		{"base shear", "2.000 kip", "4", "4", "100.0%", "2.000", "4.000", "R2"},
+	}
+	band := &DemandBand{FromS: 0.9, ToS: 1.1}
+	one := (&DemandAnswer{Percentiles: []float64{50}, Limits: limits, Band: band}).Sheet(UnitsUS)
+	row := &PortfolioRow{Structure: &PortfolioStructure{ID: "B7"}, Limits: limits, Band: band}
+	many := row.Sheet(&PortfolioAnswer{Percentiles: []float64{50}}, UnitsUS)
+	for _, s := range []*Sheet{one, many} {
+		got := s.Tables[len(s.Tables)-1]
+		if got.Caption != "Beside the capacities, over the band" || got.Columns[5].Name != "p50/limit" || !reflect.DeepEqual(got.Rows, want) {
+			t.Errorf("%s: %v, %q", got.Caption, got.Columns, got.Rows)
 		}
 	}
 }
