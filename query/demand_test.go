@@ -4,6 +4,9 @@ import (
 	"encoding/json"
 	"errors"
 	"math"
+	"slices"
+	"strconv"
+	"strings"
 	"testing"
 
 	"swaybook/pipeline/spectrum"
@@ -214,6 +217,52 @@ func TestDemandAgreesWithSpectrum(t *testing.T) {
 		a, b := quantity(t, d.Quantities, name), s.Reductions[0]
 		if a.Mean != b.Mean || a.LogMean != b.LogMean || a.LogStd != b.LogStd || a.Max != b.Max || a.Percentiles[1] != b.Percentiles[1] {
 			t.Errorf("%s: %+v and %+v", name, *a, b)
+		}
+	}
+}
+
+// TestCapacitiesInCSV: of the motions of TestDemandByHand, SD is 0.02, 0.08 and 0.32 m. Over
+// 0.16 m, and 0.04·3 m of drift, the median is 1/2 and 2/3, the greatest 2 and 8/3, and one of
+// three is above. They stand in the row of SD, of base shear in its own, of all motions alone,
+// and where there is a band in its rows.
+func TestCapacitiesInCSV(t *testing.T) {
+	store := newStore(t, handGrid, faint(handRecords()))
+	q := DemandQuestion{
+		Structure:  Structure{PeriodS: math.Pi, Damping: 0.02, MassKG: ptr(1000.0), HeightM: ptr(3.0)},
+		Capacities: Limits{DisplacementM: ptr(0.16), DriftRatio: ptr(0.04), BaseShearN: ptr(640.0)}, Percentiles: []float64{50}, By: Grouping{Attribute: "event"},
+	}
+	for _, width := range []float64{0, 1e-6} {
+		q.BandWidth = width
+		a, err := q.Ask(t.Context(), store)
+		if err != nil {
+			t.Fatal(err)
+		}
+		rows := csvRows(t, written(t, a, FormatCSV, UnitsUS))
+		at := func(name string) int { return slices.Index(rows[0], name) }
+		found := 0
+		for _, row := range rows[1:] {
+			isBand := row[at("from_s")] != row[at("to_s")]
+			for name, of := range map[string]struct {
+				quantity   string
+				limit, p50 float64
+			}{"displacement": {"sd_m", 0.16, 0.5}, "drift": {"sd_m", 0.04, 2. / 3}, "base_shear": {"base_shear_n", 640, 0.5}} {
+				cells := []string{row[at(name+"_limit")], row[at(name+"_ratio_p50")], row[at(name+"_ratio_max")], row[at(name+"_share_above")]}
+				if row[0] != of.quantity || row[at("group")] != wholeGroup || isBand != (width > 0) {
+					if strings.Join(cells, "") != "" {
+						t.Errorf("%s in the row %q", name, row)
+					}
+					continue
+				}
+				found++
+				for i, want := range []float64{of.limit, of.p50, 4 * of.p50, 1. / 3} {
+					if x, err := strconv.ParseFloat(cells[i], 64); err != nil || math.Abs(x/want-1) > 1e-5 {
+						t.Errorf("%s: cell %d is %s, want %v", name, i, cells[i], want)
+					}
+				}
+			}
+		}
+		if found != 3 {
+			t.Errorf("band %v: %d capacities of 3", width, found)
 		}
 	}
 }

@@ -109,7 +109,8 @@ func (a *DemandAnswer) rows(overBand bool, units Units) table {
 	return t
 }
 
-// csv has a row a quantity, and over the band another; the periods say which is which.
+// csv has a row a quantity, and over the band another; the periods say which is which. Where
+// capacities were given, they stand in the rows of what is compared with them.
 func (a *DemandAnswer) csv() []byte {
 	var l csvLine
 	l.words("quantity", "from_s", "to_s")
@@ -119,6 +120,9 @@ func (a *DemandAnswer) csv() []byte {
 	list := a.statistics()
 	l.words(csvNames(list, "")...)
 	l.words(a.Selection.csvGoverning()...)
+	for _, name := range a.limitNames() {
+		l.words(limitColumns(name, a.Percentiles)...)
+	}
 	l.end()
 	a.csvRows(&l, list, false, a.Structure.PeriodS, a.Structure.PeriodS)
 	if a.Band != nil {
@@ -136,8 +140,35 @@ func (a *DemandAnswer) csvRows(l *csvLine, list []statistic, overBand bool, from
 			l.word(group)
 		}
 		a.Selection.csvCells(l, list, r, 1)
+		var compared []LimitRatio
+		if group == wholeGroup && overBand == (a.Band != nil) {
+			compared = a.limitsOf(quantity)
+		}
+		for _, name := range a.limitNames() {
+			l.limit(compared, name, a.Percentiles)
+		}
 		l.end()
 	})
+}
+
+// limitNames are all that capacities can be of, none where none are given.
+func (a *DemandAnswer) limitNames() []string {
+	if a.Capacities.isNone() {
+		return nil
+	}
+	return limitNames
+}
+
+// limitsOf are those that a quantity is compared with.
+func (a *DemandAnswer) limitsOf(quantity string) (out []LimitRatio) {
+	for _, of := range a.Capacities.of(quantity, a.Structure.HeightM) {
+		for _, l := range a.Limits {
+			if l.Name == of.name {
+				out = append(out, l)
+			}
+		}
+	}
+	return out
 }
 
 // text describes the structure. The weight of a pound-force is that of the mass

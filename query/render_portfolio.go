@@ -208,11 +208,7 @@ func (a *PortfolioAnswer) csv() []byte {
 	}
 	l.words("band_from_s", "band_to_s", "band_count")
 	for _, limit := range limitNames {
-		l.word(limit + "_limit")
-		for _, p := range a.Percentiles {
-			l.word(limit + "_ratio_p" + percentKey(p))
-		}
-		l.words(limit+"_ratio_max", limit+"_share_above")
+		l.words(limitColumns(limit, a.Percentiles)...)
 	}
 	l.words("ratio", "ratio_percentile", "governing_limit", "limit_governing")
 	l.words(a.Selection.csvGoverning()...)
@@ -283,22 +279,34 @@ func reductionOf(list []Quantity, name string) *Reduction {
 	return nil
 }
 
+// limitColumns are those of a capacity.
+func limitColumns(name string, percents []float64) []string {
+	out := []string{name + "_limit"}
+	for _, p := range percents {
+		out = append(out, name+"_ratio_p"+percentKey(p))
+	}
+	return append(out, name+"_ratio_max", name+"_share_above")
+}
+
+// limit writes the columns of a capacity, empty where it is not among these.
+func (l *csvLine) limit(limits []LimitRatio, name string, percents []float64) {
+	at := slices.IndexFunc(limits, func(r LimitRatio) bool { return r.Name == name })
+	if at < 0 {
+		l.words(make([]string, len(limitColumns(name, percents)))...)
+		return
+	}
+	limit := &limits[at]
+	l.number(limit.Limit)
+	for _, x := range limit.Percentiles {
+		l.number(x)
+	}
+	l.number(limit.Max)
+	l.number(limit.Above)
+}
+
 func (a *PortfolioAnswer) csvLimits(l *csvLine, row *PortfolioRow) {
 	for _, name := range limitNames {
-		at := slices.IndexFunc(row.Limits, func(r LimitRatio) bool { return r.Name == name })
-		if at < 0 {
-			for range len(a.Percentiles) + 3 {
-				l.word("")
-			}
-			continue
-		}
-		limit := &row.Limits[at]
-		l.number(limit.Limit)
-		for _, x := range limit.Percentiles {
-			l.number(x)
-		}
-		l.number(limit.Max)
-		l.number(limit.Above)
+		l.limit(row.Limits, name, a.Percentiles)
 	}
 	worst := row.worst(a.Percentiles)
 	if worst == nil {

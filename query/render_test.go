@@ -37,6 +37,7 @@ func TestGolden(t *testing.T) {
 		return a
 	}
 	full := ask(DemandQuestion{Structure: structure, BandWidth: 0.6})
+	limited := ask(DemandQuestion{Structure: structure, BandWidth: 0.6, Capacities: Limits{DisplacementM: ptr(0.16), BaseShearN: ptr(640.0)}})
 	bare := ask(DemandQuestion{Selection: Selection{Component: ComponentEach}, Structure: Structure{PeriodS: math.Pi, Damping: 0.02}})
 	type answer interface {
 		Write(io.Writer, Format, Units) error
@@ -63,6 +64,7 @@ func TestGolden(t *testing.T) {
 		{"demand.table", full, FormatTable, UnitsSI},
 		{"demand-us.table", full, FormatTable, UnitsUS},
 		{"demand.json", full, FormatJSON, UnitsUS},
+		{"demand.csv", limited, FormatCSV, UnitsUS},
 		{"demand-bare.table", bare, FormatTable, UnitsSI},
 		{"demand-bare.json", bare, FormatJSON, UnitsSI},
 	}
