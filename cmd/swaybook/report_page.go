@@ -21,16 +21,9 @@ import (
 )
 
 // pageOf is the report as an answer that is written as other products are.
-type pageOf struct {
-	unmeasured
-	*report.Page
-}
+type pageOf struct{ *report.Page }
 
-func (p pageOf) Write(w io.Writer, _ query.Format) error     { return p.Page.Write(w) }
-func (p pageOf) Draw(io.Writer, chart.Format) error          { return errNoFigure }
-func (p pageOf) Governing() query.Governing                  { return nil }
-func (p pageOf) Remarks() string                             { return "" }
-func (p pageOf) Section(string, report.Names) report.Section { return report.Section{} }
+func (p pageOf) Write(w io.Writer, _ query.Format) error { return p.Page.Write(w) }
 
 // paginator makes the report of a study of an edition, from the answers to its products.
 type paginator struct {
@@ -71,8 +64,11 @@ func (m *paginator) product(p *product) report.Section {
 	if r.empty != nil {
 		return report.Section{ID: id, Title: p.path, Lines: []string{"No answer: " + r.empty.Error()}}
 	}
-	s := r.answer.Section(id, m.names)
-	s.Title = p.path + ": " + s.Title
+	s := report.Section{ID: id, Title: p.path}
+	if a, ok := r.answer.(sectioned); ok {
+		s = a.Section(id, m.names)
+		s.Title = p.path + ": " + s.Title
+	}
 	return s
 }
 
@@ -84,8 +80,8 @@ func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunD
 	all, ofStructures := query.Governing{}, query.Governing{}
 	for i := range m.plan.products {
 		p := &m.plan.products[i]
-		if r := m.outputs.answers[p.path]; r.empty == nil {
-			g := r.answer.Governing()
+		if a, ok := m.outputs.answers[p.path].answer.(governed); ok {
+			g := a.Governing()
 			all.Add(g)
 			if strings.HasPrefix(p.path, string(study.Demand)+".") {
 				ofStructures.Add(g)

@@ -154,10 +154,10 @@ func (c *comparison) product(ctx context.Context, p *product) error {
 
 // compared is the answer, or one without figures where there is none.
 func (r reply) compared() query.Compared {
-	if r.empty != nil {
-		return unmeasured{}
+	if a, ok := r.answer.(query.Compared); ok {
+		return a
 	}
-	return r.answer
+	return unmeasured{}
 }
 
 // units are those of the question, SI where it has none.

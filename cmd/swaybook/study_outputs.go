@@ -168,8 +168,8 @@ func (o *outputs) report(p *product, w, before db.Written) {
 	}
 	if a := o.answers[p.path]; a.empty != nil {
 		r.Empty = a.empty.Error()
-	} else if a.answer != nil {
-		r.Remarks = a.answer.Remarks()
+	} else if told, ok := a.answer.(remarked); ok {
+		r.Remarks = told.Remarks()
 	}
 	o.reports = append(o.reports, r)
 }

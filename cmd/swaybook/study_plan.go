@@ -63,7 +63,7 @@ func (p *studyPlan) page(o *outputs, known *driftReport, held int64) product {
 			}
 			m := &paginator{plan: p, outputs: o, edition: at.run, known: known}
 			page, err := m.page(ctx)
-			return pageOf{Page: page}, err
+			return pageOf{page}, err
 		},
 	}
 }

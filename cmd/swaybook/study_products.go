@@ -31,7 +31,10 @@ type outputFile struct {
 // write writes an answer in the format of the file.
 func (f *outputFile) write(a answer, w io.Writer) error {
 	if f.format.IsFigure() {
-		return a.Draw(w, chart.Format(f.format))
+		if figure, ok := a.(drawer); ok {
+			return figure.Draw(w, chart.Format(f.format))
+		}
+		return errNoFigure
 	}
 	return a.Write(w, fileFormats[f.format])
 }
@@ -51,18 +54,40 @@ type moment struct {
 // asker asks a question of a store.
 type asker func(ctx context.Context, store *db.Store, at moment) (answer, error)
 
-// answer can be written in any format. Remarks belong to it and go to people where the
-// format has no room for them.
+// answer can be written, in the formats that its files may have.
 type answer interface {
-	query.Compared
 	Write(io.Writer, query.Format) error
-	// Section is the answer's part of a report.
-	Section(id string, names report.Names) report.Section
-	// Governing are the records that are the greatest of something.
-	Governing() query.Governing
-	Draw(io.Writer, chart.Format) error
-	Remarks() string
 }
+
+// Answers are more than that as far as there is use for it: query.Compared, and these.
+type (
+	drawer interface {
+		Draw(io.Writer, chart.Format) error
+	}
+	// remarked has remarks that go to people where the format has no room for them.
+	remarked interface{ Remarks() string }
+	// sectioned has a part of a report.
+	sectioned interface {
+		Section(id string, names report.Names) report.Section
+	}
+	// governed knows the records that are the greatest of something.
+	governed interface{ Governing() query.Governing }
+)
+
+// Answers to products are all of that, but that lists of records govern nothing; the report,
+// made of them, can be written only.
+type ofProduct interface {
+	answer
+	query.Compared
+	drawer
+	remarked
+	sectioned
+}
+
+var (
+	_, _ ofProduct = inUnits{}, list{}
+	_    governed  = inUnits{}
+)
 
 // inUnits is an answer of statistics in the units that were asked for.
 type inUnits struct {
@@ -101,15 +126,13 @@ type list struct {
 
 func (l list) Section(id string, _ report.Names) report.Section { return report.Of(id, l.Sheet()) }
 
+func (l list) Remarks() string { return l.remarks }
+
 // unmeasured is what has nothing by which it could be compared.
 type unmeasured struct{}
 
 func (unmeasured) Figures() []query.Figure { return nil }
 func (unmeasured) Motions() []query.Motion { return nil }
-
-func (l list) Governing() query.Governing { return nil }
-
-func (l list) Remarks() string { return l.remarks }
 
 // newQuestion reads the flags of a command into its question, by kind.
 var newQuestion = map[study.Kind]func(*cli.Context) (asker, error){

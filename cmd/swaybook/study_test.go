@@ -164,8 +164,8 @@ func TestProductsAnswerAsCommands(t *testing.T) {
 			if got.String() != want.String() || got.Len() == 0 {
 				t.Errorf("%s:\n%s, the command prints\n%s", f.path, got.String(), want.String())
 			}
-			if f.format == "csv" && a.Remarks() != stderr.String() && name != "five" {
-				t.Errorf("%s: remarks %q, the command's %q", f.path, a.Remarks(), stderr.String())
+			if remarks := a.(remarked).Remarks(); f.format == "csv" && remarks != stderr.String() && name != "five" {
+				t.Errorf("%s: remarks %q, the command's %q", f.path, remarks, stderr.String())
 			}
 			files++
 		}
