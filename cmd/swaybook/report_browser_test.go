@@ -2,6 +2,7 @@ package main
 
 import (
 	"bytes"
+	"cmp"
 	"context"
 	"encoding/csv"
 	"encoding/json"
@@ -198,6 +199,7 @@ func TestReportInABrowser(t *testing.T) {
 	if title := evaluated[string](ctx, t, `document.title`); title != `Quays of <script>alert(1)</script> "Ardmoor"` {
 		t.Errorf("title %q", title)
 	}
+	t.Run("is reached by keys", func(t *testing.T) { isReachedByKeys(ctx, t) })
 	t.Run("sorts and filters", func(t *testing.T) { sortsAndFilters(ctx, t) })
 	t.Run("says values", func(t *testing.T) { saysValues(ctx, t, dir) })
 	t.Run("opens what a link leads to", func(t *testing.T) {
@@ -217,11 +219,42 @@ func TestReportInABrowser(t *testing.T) {
 	}
 }
 
+// isReachedByKeys goes through the page with the tab key: all that can be used gets the focus,
+// shows it, and says what it is.
+func isReachedByKeys(ctx context.Context, t *testing.T) {
+	found := map[string]bool{}
+	for range evaluated[int](ctx, t, `document.querySelectorAll("a, button, input, summary, [tabindex]").length`) {
+		do(ctx, t, chromedp.KeyEvent(kb.Tab))
+		at := evaluated[struct{ Kind, Name, Outline string }](ctx, t, `(() => { const e = document.activeElement, s = getComputedStyle(e);
+			return { Kind: e.tagName + "." + e.className, Name: (e.getAttribute("aria-label") || e.textContent).trim(), Outline: e.matches(":focus-visible") ? s.outlineStyle : "none" }; })()`)
+		if at.Kind == "BODY." { // through
+			break
+		}
+		if found[at.Kind] = true; at.Name == "" || at.Outline == "none" {
+			t.Errorf("%s is called %q, its outline is %s", at.Kind, at.Name, at.Outline)
+		}
+	}
+	for _, kind := range []string{"A.skip", "A.", "BUTTON.", "INPUT.", "SUMMARY.", "FIGURE.has-values", "DIV.wide"} {
+		if !found[kind] {
+			t.Errorf("no %s gets the focus: %v", kind, found)
+		}
+	}
+	if names := evaluated[[]string](ctx, t, `Array.from(document.querySelectorAll("input")).map(e => e.getAttribute("aria-label"))`); len(slices.Compact(slices.Sorted(slices.Values(names)))) != len(names) || !strings.HasPrefix(names[0], "Rows with") {
+		t.Errorf("fields are called %q", names)
+	}
+}
+
 func sortsAndFilters(ctx context.Context, t *testing.T) {
 	ids := func() string { return strings.Join(texts(ctx, t, "#demand-stock > .wide tbody td:first-child"), "|") }
 	click := func(column int) {
 		t.Helper()
 		evaluated[bool](ctx, t, `document.querySelectorAll("#demand-stock > .wide th button")[`+strconv.Itoa(column)+`].click(), true`)
+	}
+	ratios := texts(ctx, t, `#demand-stock th[aria-sort="descending"]`)
+	worst := evaluated[[]float64](ctx, t, `(() => { const at = document.querySelector('#demand-stock th[aria-sort="descending"]').cellIndex;
+		return Array.from(document.querySelectorAll("#demand-stock > .wide tbody tr")).map(r => parseFloat(r.cells[at].textContent)); })()`)
+	if len(ratios) != 1 || !strings.HasPrefix(ratios[0], "ratio") || len(worst) != 4 || !slices.IsSortedFunc(worst, func(a, b float64) int { return cmp.Compare(b, a) }) {
+		t.Errorf("sorted at first by %q: %v", ratios, worst)
 	}
 	if click(0); ids() != "B7 גשר|P9|P10|T1" { // numbers in words as numbers
 		t.Errorf("by structure: %s", ids())

@@ -191,7 +191,7 @@ func newPortfolioAsker(c *cli.Context) (asker, error) {
 		if whole, ok := a.(*query.PortfolioAnswer); ok {
 			return report.Portfolio(id, whole, o.units, names)
 		}
-		return report.Of(id, a.(*query.NearestAnswer).Sheet(o.units))
+		return report.Nearest(id, a.(*query.NearestAnswer), o.units)
 	}
 	ask := func(ctx context.Context, store *db.Store, at moment) (statistics, error) {
 		asked := o

@@ -42,12 +42,29 @@ type Table struct {
 	query.Table
 	// IsLong says that it is closed at first; HasFilter that its rows can be searched.
 	IsLong, HasFilter bool
+	// SortedBy is the name of the column by whose numbers rows come, the greatest first; "" for
+	// none.
+	SortedBy string
 	// Links are the parts of the page that cells of a column lead to, by column and cell.
 	Links map[int]map[string]string
 }
 
 // Link is the ID of what a cell leads to, "" for nothing.
 func (t Table) Link(column int, cell string) string { return t.Links[column][cell] }
+
+// tableWithin is a table with a name that no other table of the page has: its caption is that
+// of many, within parts of their own.
+type tableWithin struct {
+	Table
+	Label string
+}
+
+func within(t Table, title string) tableWithin {
+	if t.Caption == "" {
+		return tableWithin{t, title}
+	}
+	return tableWithin{t, t.Caption + ", " + title}
+}
 
 // Figure is a chart, with words on the values at each period.
 type Figure struct {
@@ -85,6 +102,7 @@ var page = template.Must(template.New("page").Funcs(template.FuncMap{
 	"style":  func() template.CSS { return template.CSS(style) },
 	"script": func() template.JS { return template.JS(script) },
 	"point":  point,
+	"within": within,
 }).Parse(pageText))
 
 // Write writes the page. The error is that of a chart which has nothing to draw, or of w.

@@ -47,6 +47,7 @@
     label.textContent = "Rows with";
     var input = document.createElement("input");
     input.type = "search";
+    input.setAttribute("aria-label", "Rows with words, " + table.closest(".wide").getAttribute("aria-label"));
     label.appendChild(input);
     var count = document.createElement("span");
     count.setAttribute("role", "status");

@@ -7,6 +7,7 @@ import (
 	"io"
 	"math"
 	"regexp"
+	"slices"
 	"strconv"
 	"strings"
 	"testing"
@@ -198,5 +199,27 @@ func TestMethodsHaveSources(t *testing.T) {
 	}
 	if bare := Methods("methods", "as-delivered", "no component", nil); len(bare.Tables) != 1 {
 		t.Errorf("a recipe without steps has %d tables", len(bare.Tables))
+	}
+}
+
+// TestTablesHaveNames: who goes by regions hears which table each is, of many with one caption
+// too, and by which column its rows come.
+func TestTablesHaveNames(t *testing.T) {
+	of := func(caption string) Table {
+		return Table{Table: query.Table{Caption: caption, Columns: []query.Column{{Name: "id", IsWord: true}, {Name: "ratio"}}, Rows: [][]string{{"a", "2"}}}}
+	}
+	worst := of("")
+	worst.SortedBy = "ratio"
+	text := written(t, &Page{Sections: []Section{{ID: "x", Title: "Stock", Tables: []Table{worst, of("Changes")},
+		Parts: []Section{{ID: "y", Title: "B7", Tables: []Table{of("At the period")}}, {ID: "z", Title: "B8", Tables: []Table{of("At the period")}}}}}})
+	var labels []string
+	for _, m := range regexp.MustCompile(`role="region" tabindex="0" aria-label="([^"]*)"`).FindAllStringSubmatch(text, -1) {
+		labels = append(labels, m[1])
+	}
+	if want := []string{"Stock", "Changes, Stock", "At the period, B7", "At the period, B8"}; !slices.Equal(labels, want) {
+		t.Errorf("regions %q, want %q", labels, want)
+	}
+	if n := strings.Count(text, `<th scope="col" class="number" aria-sort="descending">ratio</th>`); n != 1 {
+		t.Errorf("%d columns are said to be sorted, want 1", n)
 	}
 }

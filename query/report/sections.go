@@ -128,6 +128,14 @@ func (s *Section) linkGoverning(parts map[string]string) {
 	}
 }
 
+// Nearest is the section of many structures by the nearest stations, which come the worst
+// first.
+func Nearest(id string, a *query.NearestAnswer, units query.Units) Section {
+	out := Of(id, a.Sheet(units))
+	out.Tables[0].SortedBy = "ratio"
+	return out
+}
+
 // comeFirst puts columns before the others.
 func comeFirst(t *query.Table, names ...string) {
 	var order []int
@@ -161,7 +169,7 @@ func picked[T any](list []T, order []int) []T {
 func Portfolio(id string, a *query.PortfolioAnswer, units query.Units, names Names) Section {
 	a = a.WorstFirst()
 	out := Of(id, a.Sheet(units))
-	out.Tables[0].IsLong, out.Tables[0].HasFilter = false, true
+	out.Tables[0].IsLong, out.Tables[0].HasFilter, out.Tables[0].SortedBy = false, true, "ratio"
 	comeFirst(&out.Tables[0].Table, "structure", "name", "ratio", "limit", "above")
 	links := map[string]string{}
 	for i := range a.Rows[:min(len(a.Rows), detailed)] {
