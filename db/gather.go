@@ -94,7 +94,8 @@ func (g *gathering) events(ctx context.Context) error {
 	if err != nil {
 		return err
 	}
-	if _, err := s.open(); err != nil {
+	said, err := s.open()
+	if err != nil {
 		return g.part.damaged("events of documents", err)
 	}
 	return g.update(ctx, 0, func(t *Tx) error {
@@ -102,8 +103,7 @@ func (g *gathering) events(ctx context.Context) error {
 		if err != nil || same > 0 {
 			return err
 		}
-		err = t.exec(ctx, `INSERT OR REPLACE INTO intake_events (shard, said, sha256) VALUES (?, ?, ?)`, g.part.Number, s.said, s.sum)
-		return errors.Join(err, t.noteChange(ctx))
+		return errors.Join(t.PutIntakeEvents(ctx, g.part.Number, said), t.noteChange(ctx))
 	})
 }
 

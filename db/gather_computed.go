@@ -50,20 +50,21 @@ func (g *gathering) readComputations(ctx context.Context, pass func(computations
 			return err
 		}
 		last = found[len(found)-1].id
-		damaged, err := g.damagedIn(ctx, found[0].id, last)
-		if err != nil {
-			return err
-		}
 		batch := computationsComing{looked: len(found)}
 		for _, c := range found {
-			c.isDamaged = damaged[c.id]
-			isHeld, err := g.read(ctx, &c)
+			if c.of, err = g.part.madeOf(ctx, c.inputs); err != nil {
+				return err
+			}
+			held, err := heldComputation(ctx, g.store.read, g.generation, &c)
 			if err != nil {
 				return err
 			}
-			if !isHeld {
+			if held.id == 0 {
 				batch.list = append(batch.list, c)
 			}
+		}
+		if err := g.readComputed(ctx, batch.list); err != nil {
+			return err
 		}
 		if err := pass(batch); err != nil {
 			return err
@@ -71,18 +72,21 @@ func (g *gathering) readComputations(ctx context.Context, pass func(computations
 	}
 }
 
-// read reads a computation, unless the store is seen to have it.
-func (g *gathering) read(ctx context.Context, c *partComputation) (isHeld bool, err error) {
-	if c.of, err = g.part.madeOf(ctx, c.inputs); err != nil {
-		return false, err
+// readComputed reads what was computed, of computations in the order of their numbers.
+func (g *gathering) readComputed(ctx context.Context, list []partComputation) error {
+	if len(list) == 0 {
+		return nil
 	}
-	held, err := heldComputation(ctx, g.store.read, g.generation, c)
-	if err != nil || held.id != 0 || c.isDamaged || c.failure != "" {
-		return held.id != 0, err
+	damaged, err := g.damagedIn(ctx, list[0].id, list[len(list)-1].id)
+	for i := range list {
+		c := &list[i]
+		if c.isDamaged = damaged[c.id]; err != nil || c.isDamaged || c.failure != "" {
+			continue
+		}
+		c.computed, err = g.part.spectra(ctx, c.id)
+		c.isDamaged = len(c.computed.sd) != len(g.part.Generation.Grid.Dampings)
 	}
-	c.computed, err = g.part.spectra(ctx, c.id)
-	c.isDamaged = len(c.computed.sd) != len(g.part.Generation.Grid.Dampings)
-	return false, err
+	return err
 }
 
 // damagedIn returns which computations with numbers from first to last have measures and the

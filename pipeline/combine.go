@@ -266,12 +266,11 @@ func replayed(ctx context.Context, parts []db.Intake) (result, error) {
 		if err != nil {
 			return whole, fmt.Errorf("%s: %w", part.Path, err)
 		}
+		channels, refused := append(whole.channels, res.channels...), append(whole.refused, res.refused...)
 		if i == 0 || whole.outcome != Stored {
-			res.channels, res.refused = append(whole.channels, res.channels...), append(whole.refused, res.refused...)
 			whole = res
-			continue
 		}
-		whole.channels, whole.refused = append(whole.channels, res.channels...), append(whole.refused, res.refused...)
+		whole.channels, whole.refused = channels, refused
 	}
 	slices.SortStableFunc(whole.channels, func(a, b solved) int { return cmp.Compare(a.index, b.index) })
 	whole.key = parts[0].IntakeKey

@@ -107,16 +107,11 @@ func runCombine(ctx context.Context, o combineOptions, w io.Writer) (err error) 
 		return err
 	}
 	defer func() { err = errors.Join(err, closeParts(parts)) }()
-	lock, err := db.TakeLock(ctx, o.ingest.store, holder(o.ingest.pipeline.Started))
-	if err != nil {
-		return err
-	}
-	defer func() { err = errors.Join(err, lock.Release()) }()
-	store, err := db.Create(ctx, o.ingest.store, db.AnySolver)
-	if err != nil {
-		return err
-	}
-	defer func() { err = errors.Join(err, store.Close()) }()
+	return lockedAt(ctx, o.ingest.store, o.ingest.pipeline.Started, db.AnySolver, func(store *db.Store) error { return combine(ctx, store, parts, o, w) })
+}
+
+// combine is runCombine on open stores.
+func combine(ctx context.Context, store *db.Store, parts []*db.Part, o combineOptions, w io.Writer) error {
 	done, err := pipeline.Combine(ctx, store, parts, o.ingest.pipeline, pipeline.Study{Approve: approveAll})
 	o.ingest.monitor.end()
 	switch {

@@ -116,22 +116,28 @@ func withStoreAt(c *cli.Context, path string, f func(ctx context.Context, store 
 }
 
 // withLockedStore opens a store that is there for writing around f, as the only run on it.
-func withLockedStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) (err error) {
+func withLockedStore(c *cli.Context, f func(ctx context.Context, store *db.Store) error) error {
 	path := storePath(c)
 	if err := db.MustExist(path); err != nil { // before it has a lock
 		return explainNoStore(err, path)
 	}
-	lock, err := db.TakeLock(c.Context, path, holder(time.Now()))
+	return lockedAt(c.Context, path, time.Now(), pipeline.SolverVersion, func(store *db.Store) error { return f(c.Context, store) })
+}
+
+// lockedAt opens the store at a path, which is made where there is none, for writing around f,
+// as the only run on it. The solver is that of db.Create.
+func lockedAt(ctx context.Context, path string, started time.Time, solver string, f func(store *db.Store) error) (err error) {
+	lock, err := db.TakeLock(ctx, path, holder(started))
 	if err != nil {
 		return err
 	}
 	defer func() { err = errors.Join(err, lock.Release()) }()
-	store, err := db.Create(c.Context, path, pipeline.SolverVersion)
+	store, err := db.Create(ctx, path, solver)
 	if err != nil {
 		return err
 	}
 	defer func() { err = errors.Join(err, store.Close()) }()
-	return f(c.Context, store)
+	return f(store)
 }
 
 // explainNoStore says how to make a store.

@@ -78,10 +78,8 @@ func newIngestOptions(c *cli.Context) (o ingestOptions, err error) {
 	o.pipeline.Paths = c.Args().Slice()
 	o.pipeline.Workers = c.Int("workers")
 	o.pipeline.SkipRotation = !c.Bool("rotation")
-	if c.IsSet("shard") {
-		if o.pipeline.Shard, err = parseShard(c.String("shard"), os.Getenv); err != nil {
-			return o, usagef("--shard %w", err)
-		}
+	if o.pipeline.Shard, err = askedShard(c); err != nil {
+		return o, err
 	}
 	if err := checkWorkers(c); err != nil {
 		return o, err
@@ -186,17 +184,12 @@ func (o *ingestOptions) readCatalogue(name string) error {
 }
 
 // runIngest fills the store and prints the summary. No other run may do so meanwhile.
-func runIngest(ctx context.Context, o ingestOptions, w io.Writer) (err error) {
-	lock, err := db.TakeLock(ctx, o.store, holder(o.pipeline.Started))
-	if err != nil {
-		return err
-	}
-	defer func() { err = errors.Join(err, lock.Release()) }()
-	store, err := db.Create(ctx, o.store, db.AnySolver)
-	if err != nil {
-		return err
-	}
-	defer func() { err = errors.Join(err, store.Close()) }()
+func runIngest(ctx context.Context, o ingestOptions, w io.Writer) error {
+	return lockedAt(ctx, o.store, o.pipeline.Started, db.AnySolver, func(store *db.Store) error { return fill(ctx, store, o, w) })
+}
+
+// fill is runIngest on an open store.
+func fill(ctx context.Context, store *db.Store, o ingestOptions, w io.Writer) error {
 	summary, err := pipeline.Run(ctx, store, o.pipeline)
 	o.monitor.end()
 	if err != nil && !summary.HasBegun() {

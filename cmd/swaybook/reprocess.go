@@ -78,12 +78,9 @@ func newReprocessOptions(c *cli.Context) (o reprocessOptions, err error) {
 		}
 		o.maxDrift = &bound
 	}
-	if c.IsSet("shard") {
-		var errShard error
-		if o.shard, errShard = parseShard(c.String("shard"), os.Getenv); errShard != nil {
-			err = errors.Join(err, usagef("--shard %w", errShard))
-		}
-	}
+	var errShard error
+	o.shard, errShard = askedShard(c)
+	err = errors.Join(err, errShard)
 	if o.combine = c.Int("combine"); c.IsSet("combine") && (o.combine < 1 || o.combine > maxShards) {
 		err = errors.Join(err, usagef("--combine %d: want 1 to %d", o.combine, maxShards))
 	}

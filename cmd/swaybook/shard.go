@@ -3,6 +3,7 @@ package main
 import (
 	"errors"
 	"fmt"
+	"os"
 	"strconv"
 	"strings"
 
@@ -28,6 +29,18 @@ const (
 	jobIndex      = "JOB_COMPLETION_INDEX"
 	countVariable = "SWAYBOOK_SHARDS"
 )
+
+// askedShard is the part that the command line asks for, the zero value for all.
+func askedShard(c *cli.Context) (db.Shard, error) {
+	if !c.IsSet("shard") {
+		return db.Shard{}, nil
+	}
+	s, err := parseShard(c.String("shard"), os.Getenv)
+	if err != nil {
+		return s, usagef("--shard %w", err)
+	}
+	return s, nil
+}
 
 // parseShard reads a part of an archive; getenv gives what the environment says.
 func parseShard(text string, getenv func(string) string) (db.Shard, error) {

@@ -29,30 +29,22 @@ func (p *studyPlan) ownShards(count int) {
 
 // runStudyShard makes a shard's store that of its part of the study's files as they are. The
 // study's questions are left to the run that combines the shards.
-func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) (err error) {
+func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) error {
 	ingest := plan.ingest
 	ingest.store = shardStore(plan.study.Store.Value, o.shard)
 	ingest.pipeline.Shard, ingest.pipeline.Takes = o.shard, plan.study.Takes
 	plan.ownShards(o.shard.Count)
-	lock, err := db.TakeLock(ctx, ingest.store, holder(ingest.pipeline.Started))
-	if err != nil {
-		return err
-	}
-	defer func() { err = errors.Join(err, lock.Release()) }()
-	store, err := db.Create(ctx, ingest.store, db.AnySolver)
-	if err != nil {
-		return err
-	}
-	defer func() { err = errors.Join(err, store.Close()) }()
-	done, err := pipeline.Reprocess(ctx, store, ingest.pipeline, plan.followed(o, approveAll))
-	ingest.monitor.end()
-	switch {
-	case err != nil && ctx.Err() != nil:
-		return interruption(done.Summary)
-	case err != nil:
-		return err
-	}
-	return printStudyShard(w, o, newIngestReport(ingest, done.Summary, true), done)
+	return lockedAt(ctx, ingest.store, ingest.pipeline.Started, db.AnySolver, func(store *db.Store) error {
+		done, err := pipeline.Reprocess(ctx, store, ingest.pipeline, plan.followed(o, approveAll))
+		ingest.monitor.end()
+		switch {
+		case err != nil && ctx.Err() != nil:
+			return interruption(done.Summary)
+		case err != nil:
+			return err
+		}
+		return printStudyShard(w, o, newIngestReport(ingest, done.Summary, true), done)
+	})
 }
 
 // followed is what the pipeline is told of the study.
