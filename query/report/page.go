@@ -8,6 +8,7 @@ import (
 	"io"
 	"strconv"
 	"strings"
+	"unicode/utf8"
 
 	"swaybook/query"
 	"swaybook/query/chart"
@@ -57,13 +58,54 @@ func (t Table) Link(column int, cell string) string { return t.Links[column][cel
 type tableWithin struct {
 	Table
 	Label string
+	// isNarrow says that paper has room for its short words, such as times and units, in one
+	// line.
+	isNarrow bool
 }
 
 func within(t Table, title string) tableWithin {
-	if t.Caption == "" {
-		return tableWithin{t, title}
+	out := tableWithin{Table: t, Label: title, isNarrow: t.width() <= roomy}
+	if t.Caption != "" {
+		out.Label = t.Caption + ", " + title
 	}
-	return tableWithin{t, t.Caption + ", " + title}
+	return out
+}
+
+// roomy is how many characters are sure to fit beside each other on A4 and Letter: of 7 pt, as
+// they are printed, some 115 of a wide face do in 13 columns.
+const roomy = 108
+
+// width is how many characters the words stand in that may not be broken.
+func (t Table) width() (n int) {
+	for i, c := range t.Columns {
+		widest := 0
+		for word := range strings.FieldsSeq(c.Name) {
+			widest = max(widest, utf8.RuneCountInString(word))
+		}
+		for _, row := range t.Rows {
+			if cell := row[i]; !c.IsWord || isShort(cell) {
+				widest = max(widest, utf8.RuneCountInString(cell))
+			}
+		}
+		n += widest
+	}
+	return n
+}
+
+func isShort(cell string) bool {
+	const short = 22
+	return cell != "" && !strings.Contains(cell, " ") && utf8.RuneCountInString(cell) <= short
+}
+
+// Class is that of a cell: numbers stand to the right, and they and short words in one line.
+func (t tableWithin) Class(column int, cell string) string {
+	switch {
+	case !t.Columns[column].IsWord:
+		return "number"
+	case t.isNarrow && isShort(cell):
+		return "short"
+	}
+	return ""
 }
 
 // Figure is a chart, with words on the values at each period.
@@ -72,6 +114,17 @@ type Figure struct {
 	Chart   chart.Chart
 	Size    chart.Size
 	Strips  []Strip
+}
+
+// Class is that of a figure which says values, or would take most of a page of its width.
+func (f Figure) Class() string {
+	switch {
+	case f.Strips != nil:
+		return "has-values"
+	case f.Size.Height > f.Size.Width:
+		return "tall"
+	}
+	return ""
 }
 
 // ViewBox is that of what is laid over the chart.

@@ -187,7 +187,7 @@ func TestNothingToDrawIsAnError(t *testing.T) {
 func TestMethodsHaveSources(t *testing.T) {
 	s := Methods("methods", "own", "raw components", []Step{{"taper", "cosine bells", "Tukey 1967"}})
 	text := written(t, &Page{Sections: []Section{s}})
-	if !strings.Contains(text, "<td><bdi>taper</bdi></td><td><bdi>cosine bells</bdi></td><td><bdi>Tukey 1967</bdi></td>") {
+	if !strings.Contains(text, `<td class="short"><bdi>taper</bdi></td><td><bdi>cosine bells</bdi></td><td><bdi>Tukey 1967</bdi></td>`) {
 		t.Error("the step is not on the page with its source")
 	}
 	for _, table := range s.Tables {
@@ -221,5 +221,29 @@ func TestTablesHaveNames(t *testing.T) {
 	}
 	if n := strings.Count(text, `<th scope="col" class="number" aria-sort="descending">ratio</th>`); n != 1 {
 		t.Errorf("%d columns are said to be sorted, want 1", n)
+	}
+}
+
+// TestShortWordsStayWhole: a time or a unit is not broken where paper has room for that, and
+// is where a table has too many of them.
+func TestShortWordsStayWhole(t *testing.T) {
+	columns, row := []query.Column{{Name: "n"}}, []string{"1.234"}
+	for range 2 {
+		columns, row = append(columns, query.Column{Name: "start", IsWord: true}), append(row, "2014-08-30T03:02:45Z")
+	}
+	narrow := Table{Table: query.Table{Columns: columns, Rows: [][]string{row}}}
+	wide := Table{Table: query.Table{Columns: slices.Concat(columns, columns, columns), Rows: [][]string{slices.Concat(row, row, row)}}}
+	for _, c := range []struct {
+		table  Table
+		column int
+		cell   string
+		want   string
+	}{
+		{narrow, 0, "1.234", "number"}, {narrow, 1, row[1], "short"}, {narrow, 1, "two words", ""}, {narrow, 1, "", ""}, {narrow, 1, hostile[6], ""},
+		{wide, 0, "1.234", "number"}, {wide, 1, row[1], ""},
+	} {
+		if got := within(c.table, "").Class(c.column, c.cell); got != c.want {
+			t.Errorf("%q in one of %d columns is %q, want %q", c.cell, len(c.table.Columns), got, c.want)
+		}
 	}
 }
