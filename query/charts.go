@@ -153,6 +153,34 @@ func (a *SpectrumAnswer) ValuesAt(period int, units Units) string {
 	return strings.Join(append(words, countOf(a.Reductions[period].Count, "motion", "motions")), " · ")
 }
 
+// FourWayAt are what the four-way chart says at a period, by position, in words: PSV of all
+// curves, and SD and PSA of the median or, where few motions support none, of the mean.
+func (a *SpectrumAnswer) FourWayAt(period int, units Units) string {
+	t := a.PeriodsS[period]
+	unit, _, per := MeasurePSV.unitOf(units)
+	words := []string{"T = " + figure(t) + " s"}
+	c := chart.Spectra{PeriodsS: a.PeriodsS}
+	a.addCurves(&c, 1)
+	a.toPSV(&c)
+	var read []string
+	for _, curve := range c.Curves {
+		v := curve.Values[period]
+		if !isDefined(v) {
+			continue
+		}
+		words = append(words, curve.Name+" PSV "+figure(v/per)+" "+unit)
+		if curve.Kind == chart.Median || curve.Kind == chart.Mean && read == nil {
+			sd := v / omega(t)
+			for _, m := range []Measure{MeasureSD, MeasurePSA} {
+				unit, _, per := m.unitOf(units)
+				read = append(read, curve.Name+" "+m.short()+" "+figure(m.of(sd, omega(t))/per)+" "+unit)
+			}
+		}
+	}
+	words = append(words, read...)
+	return strings.Join(append(words, countOf(a.Reductions[period].Count, "motion", "motions")), " · ")
+}
+
 // readAt reads a curve at a period, between its points along a straight line on logarithmic
 // axes, as it is drawn; NaN outside.
 func readAt(periodsS, values []float64, at float64) float64 {

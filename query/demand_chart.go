@@ -3,6 +3,7 @@ package query
 import (
 	"fmt"
 	"slices"
+	"sort"
 	"strings"
 
 	"swaybook/query/chart"
@@ -54,12 +55,34 @@ func (a *DemandAnswer) Chart(units Units, isLinear bool) *chart.Exceedance {
 	if !a.Selection.Balance.isNone() {
 		c.Share = "weight above (%)"
 	}
-	for i := range a.Exceedances {
-		if e := &a.Exceedances[i]; e.Quantity == "sd_m" || e.Quantity == "base_shear_n" {
-			c.Panels = append(c.Panels, a.panel(e, units))
-		}
+	for _, e := range a.charted() {
+		c.Panels = append(c.Panels, a.panel(e, units))
 	}
 	return c
+}
+
+// charted are the quantities of the chart, from the top.
+func (a *DemandAnswer) charted() (out []*Exceedance) {
+	for i := range a.Exceedances {
+		if e := &a.Exceedances[i]; e.Quantity == "sd_m" || e.Quantity == "base_shear_n" {
+			out = append(out, e)
+		}
+	}
+	return out
+}
+
+// ValueAt is a motion's value in the chart, by panel and position, and how many motions
+// exceed it, in words.
+func (a *DemandAnswer) ValueAt(panel, position int, units Units) string {
+	e := a.charted()[panel]
+	u := quantityUnits[e.Quantity]
+	unit, per := u.in(units)
+	value, n, of := e.Values[position], len(e.Values), ""
+	above := n - sort.Search(n, func(i int) bool { return e.Values[i] > value })
+	if !a.Selection.Balance.isNone() {
+		of = " of the weight"
+	}
+	return fmt.Sprintf("%s %s %s · exceeded by %d of %s, %s%s", u.title, figure(value/per), unit, above, countOf(n, "motion", "motions"), percentTitle(e.Above[position]), of)
 }
 
 func (a *DemandAnswer) panel(e *Exceedance, units Units) chart.ExceedancePanel {

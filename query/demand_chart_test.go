@@ -56,6 +56,11 @@ func TestCapacitiesByHand(t *testing.T) {
 			t.Errorf("above %v m are %v", e.Values[k], e.Above[k])
 		}
 	}
+	for panel, want := range []string{"displacement SD 3.937 in · exceeded by 2 of 7 motions, 28.6%", "base shear 0.08992 kip · exceeded by 2 of 7 motions, 28.6%"} {
+		if got := a.ValueAt(panel, 4, UnitsUS); got != want {
+			t.Errorf("it says %q, want %q", got, want)
+		}
+	}
 	table := written(t, a, FormatTable, UnitsUS)
 	for _, line := range []string{"\nBeside the capacities\n", "\ndisplacement     3.937 in      2   7  28.6%"} {
 		if !strings.Contains(table, line) {
@@ -107,6 +112,9 @@ func TestBalancedExceedance(t *testing.T) {
 		}
 		return 1
 	})
+	if got, want := a.ValueAt(0, at, UnitsSI), "displacement SD 0.1000 m · exceeded by 2 of 7 motions, 29.2% of the weight"; got != want {
+		t.Errorf("it says %q, want %q", got, want)
+	}
 	if !found || !near(e.Above[at], l.Above) || l.CountAbove != 2 || !near(l.Above, 7.0/24) {
 		t.Errorf("above 0.1 m are %v, %+v", e.Above, l)
 	}

@@ -64,3 +64,18 @@ func TestSheetsHaveNames(t *testing.T) {
 		}
 	}
 }
+
+// TestFourWayAt: at 2π s ω is 1 rad/s, so that 0.254 m are 0.254 m/s and 0.254 m/s², which is
+// 0.02590 g; 0.0254 m are an inch. Where the median is not supported the mean has all three.
+func TestFourWayAt(t *testing.T) {
+	x := 0.254 / StandardGravity
+	reduction := Reduction{Count: 2, Percentiles: []float64{x}, Mean: 2 * x, Max: math.NaN(), Min: math.NaN()}
+	a := &SpectrumAnswer{Measure: MeasurePSA, Percentiles: []float64{50}, PeriodsS: []float64{2 * math.Pi}, Reductions: []Reduction{reduction}}
+	if got, want := a.FourWayAt(0, UnitsUS), "T = 6.283 s · median PSV 10.00 in/s · mean PSV 20.00 in/s · median SD 10.00 in · median PSA 0.02590 g · 2 motions"; got != want {
+		t.Errorf("it says %q, want %q", got, want)
+	}
+	a.Reductions[0].Percentiles[0] = math.NaN()
+	if got, want := a.FourWayAt(0, UnitsSI), "T = 6.283 s · mean PSV 0.5080 m/s · mean SD 0.5080 m · mean PSA 0.05180 g · 2 motions"; got != want {
+		t.Errorf("it says %q, want %q", got, want)
+	}
+}

@@ -5,13 +5,10 @@ import (
 	"cmp"
 	"context"
 	"encoding/csv"
-	"encoding/json"
-	"math"
 	"net/url"
 	"os"
 	"os/exec"
 	"path/filepath"
-	"regexp"
 	"slices"
 	"strconv"
 	"strings"
@@ -21,7 +18,6 @@ import (
 
 	"github.com/chromedp/cdproto/cdp"
 	"github.com/chromedp/cdproto/emulation"
-	"github.com/chromedp/cdproto/input"
 	"github.com/chromedp/cdproto/network"
 	"github.com/chromedp/cdproto/page"
 	"github.com/chromedp/cdproto/runtime"
@@ -48,6 +44,12 @@ files = "out/all.json"
 [demand.stock]
 component = "each"
 structures = "stock.csv"
+
+[demand.pier]
+component = "each"
+period = "0.6s"
+weight = "10000kN"
+files = "out/pier.json"
 
 [records.held]
 `
@@ -202,6 +204,8 @@ func TestReportInABrowser(t *testing.T) {
 	t.Run("is reached by keys", func(t *testing.T) { isReachedByKeys(ctx, t) })
 	t.Run("sorts and filters", func(t *testing.T) { sortsAndFilters(ctx, t) })
 	t.Run("says values", func(t *testing.T) { saysValues(ctx, t, dir) })
+	t.Run("says PSV", func(t *testing.T) { saysPSV(ctx, t, dir) })
+	t.Run("says who exceeds", func(t *testing.T) { saysWhoExceeds(ctx, t, dir) })
 	t.Run("opens what a link leads to", func(t *testing.T) {
 		do(ctx, t, chromedp.Click(chromedp.CSS("#demand-stock tr:not([hidden]) td a")), chromedp.WaitVisible(chromedp.CSS("#demand-stock details.part[open] table")))
 	})
@@ -283,48 +287,6 @@ func sortsAndFilters(ctx context.Context, t *testing.T) {
 	if got := ids(); got != "T1" {
 		t.Errorf("filtered by name: %s", got)
 	}
-}
-
-// saysValues moves the pointer over the chart to a period, and goes to others by keys: the
-// page says what JSON has, in four digits.
-func saysValues(ctx context.Context, t *testing.T, dir string) {
-	var want struct {
-		Periods     []float64            `json:"periods_s"`
-		Count       []int                `json:"count"`
-		Mean, Max   []float64            `json:"-"`
-		Percentiles map[string][]float64 `json:"percentiles"`
-		MeanOf      []float64            `json:"mean"`
-	}
-	text, err := os.ReadFile(filepath.Join(dir, "out", "all.json"))
-	if err == nil {
-		err = json.Unmarshal(text, &want)
-	}
-	if err != nil {
-		t.Fatal(err)
-	}
-	check := func(at int, words string) {
-		t.Helper()
-		for name, value := range map[string]float64{"T =": want.Periods[at], "median": want.Percentiles["50"][at], "p84": want.Percentiles["84"][at], "mean": want.MeanOf[at]} {
-			m := regexp.MustCompile(regexp.QuoteMeta(name) + ` ([0-9.e+-]+)`).FindStringSubmatch(words)
-			if m == nil {
-				t.Errorf("%q does not say %s", words, name)
-				continue
-			}
-			if got, err := strconv.ParseFloat(m[1], 64); err != nil || math.Abs(got/value-1) > 0.5e-3 {
-				t.Errorf("%q: %s is %g in JSON", words, name, value)
-			}
-		}
-		if !strings.HasSuffix(words, strconv.Itoa(want.Count[at])+" motions") {
-			t.Errorf("%q: %d motions in JSON", words, want.Count[at])
-		}
-	}
-	where := evaluated[struct{ X, Y float64 }](ctx, t, `(() => { const f = document.querySelector("#spectrum-all figure"); f.scrollIntoView(); const r = f.querySelectorAll(".strips rect")[4].getBoundingClientRect(); return {X: r.x + r.width / 2, Y: r.y + r.height / 2}; })()`)
-	do(ctx, t, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, where.X, where.Y))
-	check(4, texts(ctx, t, "#spectrum-all figure .values")[0])
-	do(ctx, t, chromedp.Focus(chromedp.CSS("#spectrum-all figure")), chromedp.KeyEvent(kb.ArrowRight+kb.ArrowRight))
-	check(6, texts(ctx, t, "#spectrum-all figure .values")[0])
-	do(ctx, t, chromedp.KeyEvent(kb.Home))
-	check(0, texts(ctx, t, "#spectrum-all figure .values")[0])
 }
 
 // prints makes PDFs of both common sizes of paper. Nothing is cut off at the right, and the

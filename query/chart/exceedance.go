@@ -48,11 +48,12 @@ func (p *ExceedancePanel) at(value float64) float64 {
 // levelRoom is that of the levels' names, panelGap between panels.
 const levelRoom, panelGap vg.Length = 164, 6
 
-// shown are the panels of which a value is positive.
-func (s *Exceedance) shown() (out []ExceedancePanel) {
-	for _, p := range s.Panels {
-		if n := len(p.Values); n > 0 && p.Values[n-1] > 0 {
-			out = append(out, p)
+// shown are the positions of the panels of which a value is positive.
+func (s *Exceedance) shown() (out []int) {
+	for i := range s.Panels {
+		values := s.Panels[i].Values
+		if n := len(values); n > 0 && values[n-1] > 0 {
+			out = append(out, i)
 		}
 	}
 	return out
@@ -66,14 +67,25 @@ func (s *Exceedance) Draw(c draw.Canvas) {
 	shown := s.shown()
 	h := newHeading(c, s.Title, s.Notes, s.Foot)
 	h.write(c)
-	area := draw.Crop(c, leftRoom, -levelRoom, footRoom, -h.room())
-	height := area.Size().Y / vg.Length(len(shown))
-	for i := range shown {
-		f := frame{Canvas: area, x: shown[i].axis(s.IsLinear), y: linearAxis(s.Share, 100)}
-		f.Max.Y = area.Max.Y - height*vg.Length(i)
-		f.Min.Y = f.Max.Y - height + bottomRoom + panelGap
-		shown[i].draw(&f)
+	area := s.area(c, h)
+	for i, at := range shown {
+		f := s.frame(area, at, i, len(shown))
+		s.Panels[at].draw(&f)
 	}
+}
+
+// area is that of the panels.
+func (s *Exceedance) area(c draw.Canvas, h heading) draw.Canvas {
+	return draw.Crop(c, leftRoom, -levelRoom, footRoom, -h.room())
+}
+
+// frame is that of a panel, the nth of some from the top.
+func (s *Exceedance) frame(area draw.Canvas, panel, nth, of int) frame {
+	height := area.Size().Y / vg.Length(of)
+	f := frame{Canvas: area, x: s.Panels[panel].axis(s.IsLinear), y: linearAxis(s.Share, 100)}
+	f.Max.Y = area.Max.Y - height*vg.Length(nth)
+	f.Min.Y = f.Max.Y - height + bottomRoom + panelGap
+	return f
 }
 
 // axis has all values and levels.

@@ -85,3 +85,35 @@ func TestLongNamesOfTicks(t *testing.T) {
 		t.Error("names of ticks run into each other")
 	}
 }
+
+// TestStripsOfExceedances: each panel has its own, without gaps, of equal values the last, and
+// of a panel that is not drawn none.
+func TestStripsOfExceedances(t *testing.T) {
+	c := inventedExceedance()
+	c.Panels = append(c.Panels, ExceedancePanel{Quantity: "none", Values: []float64{0}, Above: []float64{0}}, ExceedancePanel{Quantity: "shear (kN)", Values: []float64{10, 1000}, Above: []float64{0.5, 0}})
+	strips := c.Strips(Square)
+	want := [][2]int{{0, 0}, {0, 2}, {0, 3}, {2, 0}, {2, 1}}
+	if len(strips) != len(want) {
+		t.Fatalf("%d strips, want %d: %+v", len(strips), len(want), strips)
+	}
+	for i, s := range strips {
+		if [2]int{s.Panel, s.Position} != want[i] || s.At < s.X || s.At > s.X+s.Width || !(s.Height > 50) {
+			t.Errorf("strip %d: %+v, want panel and position %v", i, s, want[i])
+		}
+		if before := strips[max(0, i-1)]; i > 0 && before.Panel == s.Panel && math.Abs(before.X+before.Width-s.X) > 1e-9 {
+			t.Errorf("a gap before strip %d", i)
+		}
+	}
+	if above, below := strips[2], strips[3]; above.Y+above.Height >= below.Y {
+		t.Errorf("panels overlap: %+v, %+v", above, below)
+	}
+	if s := (&Exceedance{}).Strips(Square); s != nil {
+		t.Errorf("of nothing: %+v", s)
+	}
+	for i := range 1000 {
+		c.Panels[0].Values, c.Panels[0].Above = append(c.Panels[0].Values, 8+float64(i)/1000), append(c.Panels[0].Above, 0)
+	}
+	if n := len(c.Strips(Square)); n > 200 {
+		t.Errorf("%d strips, most of no width", n)
+	}
+}

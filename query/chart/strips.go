@@ -7,12 +7,13 @@ import (
 	"gonum.org/v1/plot/vg/draw"
 )
 
-// Strip is the part of a chart that is nearest to one period, in points from its top left
-// corner: where a reader points who asks for the values at that period.
+// Strip is the part of a chart that is nearest to one period, or to one motion's value, in
+// points from its top left corner: where a reader points who asks for what is there.
 type Strip struct {
-	Period              int     // by position
+	Panel               int     // by position, of charts that have several
+	Position            int     // of the period, or of the value
 	X, Y, Width, Height float64 // of the part
-	At                  float64 // where the period itself lies
+	At                  float64 // where the period, or the value, itself lies
 }
 
 // Strips are the parts of a chart of a size, from left to right: of every period within the
@@ -34,18 +35,40 @@ func (s *FourWay) Strips(size Size) []Strip {
 	return f.strips(s.PeriodsS, size)
 }
 
+// Strips are, panel by panel, those of the motions' values; of values that lie within a point
+// of each other that of the greatest.
+func (s *Exceedance) Strips(size Size) (out []Strip) {
+	shown := s.shown()
+	area := s.area(size.canvas(), newHeading(size.canvas(), s.Title, s.Notes, s.Foot))
+	for i, at := range shown {
+		f := s.frame(area, at, i, len(shown))
+		var apart []Strip
+		for _, strip := range f.strips(s.Panels[at].Values, size) {
+			strip.Panel = at
+			if n := len(apart); n > 0 && strip.At-apart[n-1].At < 1 {
+				strip.X, strip.Width = apart[n-1].X, strip.Width+strip.X-apart[n-1].X
+				apart = apart[:n-1]
+			}
+			apart = append(apart, strip)
+		}
+		out = append(out, apart...)
+	}
+	return out
+}
+
 // canvas is one on which nothing can be drawn.
 func (s Size) canvas() draw.Canvas {
 	return draw.Canvas{Rectangle: vg.Rectangle{Max: vg.Point{X: s.Width, Y: s.Height}}}
 }
 
-func (f *frame) strips(periodsS []float64, size Size) (out []Strip) {
-	for i, t := range periodsS {
+// strips are those of ascending places on the axis across.
+func (f *frame) strips(places []float64, size Size) (out []Strip) {
+	for i, t := range places {
 		if !f.x.has(t) {
 			continue
 		}
 		x := float64(f.point(t, f.y.from).X)
-		out = append(out, Strip{Period: i, X: float64(f.Min.X), At: x, Y: float64(size.Height - f.Max.Y), Height: float64(f.Size().Y)})
+		out = append(out, Strip{Position: i, X: float64(f.Min.X), At: x, Y: float64(size.Height - f.Max.Y), Height: float64(f.Size().Y)})
 		if n := len(out); n > 1 {
 			middle := (out[n-2].At + x) / 2
 			out[n-2].Width, out[n-1].X = middle-out[n-2].X, middle

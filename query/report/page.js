@@ -94,7 +94,8 @@
       line.setAttribute("y2", top + parseFloat(strip.getAttribute("height")));
       values.textContent = words[at];
     }
-    strips.forEach(function (strip, i) { strip.addEventListener("pointerenter", function () { show(i); }); });
+    // A pointer that rests while keys scroll the page says nothing.
+    strips.forEach(function (strip, i) { strip.addEventListener("pointermove", function () { if (i !== at) show(i); }); });
     figure.addEventListener("keydown", function (event) {
       var step = { ArrowLeft: -1, ArrowRight: 1, PageUp: -10, PageDown: 10 }[event.key];
       if (event.key === "Home") show(0);

@@ -24,7 +24,7 @@ func inventedPage() *Page {
 	c := &chart.Spectra{Title: hostile[1], Notes: []string{hostile[3]}, Foot: "foot", Quantity: "PSA (g)", PeriodsS: []float64{0.1, 1, 5}, Curves: []chart.Curve{curve}, Counts: []int{1, 1, 1}}
 	f := Figure{Caption: hostile[0], Chart: c, Size: chart.Half}
 	for _, s := range c.Strips(chart.Half) {
-		f.Strips = append(f.Strips, Strip{s, hostile[s.Period]})
+		f.Strips = append(f.Strips, Strip{s, hostile[s.Position]})
 	}
 	t := Table{Table: query.Table{Caption: hostile[1], Columns: []query.Column{{Name: hostile[0], IsWord: true}, {Name: "n"}}}, HasFilter: true, Links: map[int]map[string]string{0: {hostile[7]: "part"}}}
 	for i, h := range hostile {
@@ -165,7 +165,7 @@ func TestStripsMeetPeriods(t *testing.T) {
 		t.Fatalf("%d strips of 3 periods", len(strips))
 	}
 	for i, s := range strips {
-		if s.At < s.X || s.At > s.X+s.Width || s.Period != i || !(s.Height > 100) {
+		if s.At < s.X || s.At > s.X+s.Width || s.Position != i || !(s.Height > 100) {
 			t.Errorf("strip %+v", s)
 		}
 		if i > 0 && math.Abs(strips[i-1].X+strips[i-1].Width-s.X) > 1e-9 {

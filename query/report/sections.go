@@ -39,7 +39,7 @@ func Of(id string, s *query.Sheet) Section {
 	return out
 }
 
-// stripped is a chart that knows where periods lie.
+// stripped is a chart that knows where periods or values lie.
 type stripped interface {
 	chart.Chart
 	Strips(chart.Size) []chart.Strip
@@ -49,23 +49,27 @@ type stripped interface {
 // the table. The answer has its spectra.
 func Spectrum(id string, a *query.SpectrumAnswer, units query.Units, marks []chart.Mark, isLinear bool) Section {
 	out := Of(id, a.Sheet(units))
-	figure := func(caption string, c stripped, size chart.Size) {
-		f := Figure{Caption: caption, Chart: c, Size: size}
-		for _, s := range c.Strips(size) {
-			f.Strips = append(f.Strips, Strip{s, a.ValuesAt(s.Period, units)})
-		}
-		if f.Strips != nil { // else there is nothing to draw
-			out.Figures = append(out.Figures, f)
-		}
-	}
 	// What figures have as notes stands above them already.
 	flat := a.Chart(units, marks, isLinear)
 	flat.Notes = nil
-	figure("Spectra of all motions with their percentiles; the strip counts the motions that hold them up.", flat, chart.Half)
+	out.Figures = saying("Spectra of all motions with their percentiles; the strip counts the motions that hold them up.", flat, chart.Half,
+		func(s chart.Strip) string { return a.ValuesAt(s.Position, units) })
 	if a.HasFourWay() {
 		c := a.FourWay(units, marks)
 		c.Notes = nil
-		figure("Four-way chart: pseudo-velocity upwards, displacement and pseudo-acceleration along the diagonals.", c, chart.Square)
+		out.Figures = append(out.Figures, saying("Four-way chart: pseudo-velocity upwards, displacement and pseudo-acceleration along the diagonals.", c, chart.Square,
+			func(s chart.Strip) string { return a.FourWayAt(s.Position, units) })...)
+	}
+	return out
+}
+
+// saying is a figure that says its values, none where there is nothing to draw.
+func saying(caption string, c stripped, size chart.Size, words func(chart.Strip) string) []Figure {
+	out := Drawn(caption, c, size)
+	for i := range out {
+		for _, s := range c.Strips(size) {
+			out[i].Strips = append(out[i].Strips, Strip{s, words(s)})
+		}
 	}
 	return out
 }
@@ -76,7 +80,7 @@ func Demand(id string, a *query.DemandAnswer, units query.Units, isLinear bool, 
 	out := Of(id, a.Sheet(units))
 	c := a.Chart(units, isLinear)
 	c.Notes = nil // they stand above it already
-	out.Figures = Drawn("How many motions exceed a demand.", c, size)
+	out.Figures = saying("How many motions exceed a demand.", c, size, func(s chart.Strip) string { return a.ValueAt(s.Panel, s.Position, units) })
 	return out
 }
 
