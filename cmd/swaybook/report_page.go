@@ -96,7 +96,7 @@ func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunD
 	s := report.Section{ID: m.names.ID("governing"), Title: "Governing records", Lines: []string{
 		"The greatest at a period, of a quantity, or of a structure's demand over its capacity."}}
 	t := query.Table{Columns: []query.Column{{Name: "governing", IsWord: true}, {Name: "times"}}}
-	parts := map[string]string{}
+	parts, units := map[string]string{}, m.units()
 	for i, code := range codes {
 		t.Rows = append(t.Rows, []string{code, strconv.Itoa(all[code])})
 		if i >= mostSheets {
@@ -106,7 +106,7 @@ func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunD
 		if err != nil {
 			return err
 		}
-		part := report.Record(m.names.ID("record", code), a, query.UnitsSI)
+		part := report.Record(m.names.ID("record", code), a, units)
 		parts[code] = part.ID
 		s.Parts = append(s.Parts, part)
 	}
@@ -117,6 +117,21 @@ func (m *paginator) addGoverning(ctx context.Context, p *report.Page, _ *db.RunD
 	p.Sections = append(p.Sections, s)
 	p.LinkGoverning(parts)
 	return nil
+}
+
+// units are those of all products, for what is of several; SI where they differ.
+func (m *paginator) units() (out query.Units) {
+	for i := range m.plan.products {
+		of, ok := m.outputs.answers[m.plan.products[i].path].answer.(inUnits)
+		switch {
+		case !ok:
+		case out == "":
+			out = of.units
+		case out != of.units:
+			return query.UnitsSI
+		}
+	}
+	return cmp.Or(out, query.UnitsSI)
 }
 
 // addRecords says what is held, what it is worth, and where it is from.
