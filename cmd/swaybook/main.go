@@ -7,6 +7,7 @@ import (
 	"io"
 	"os"
 	"os/signal"
+	"slices"
 	"syscall"
 
 	"github.com/urfave/cli/v2"
@@ -84,7 +85,7 @@ func rank(err error) int {
 	switch {
 	case err == nil:
 		return exitDone
-	case errors.Is(err, errRejected):
+	case isRejectedOnly(err):
 		return exitRejected
 	case errors.Is(err, errInterrupted), errors.Is(err, context.Canceled):
 		return exitInterrupted
@@ -97,6 +98,17 @@ func rank(err error) int {
 		return exitLocked
 	}
 	return exitFailed
+}
+
+// isRejectedOnly reports whether nothing went wrong but that files were rejected.
+func isRejectedOnly(err error) bool {
+	switch e := err.(type) {
+	case interface{ Unwrap() []error }:
+		return !slices.ContainsFunc(e.Unwrap(), func(one error) bool { return !isRejectedOnly(one) })
+	case interface{ Unwrap() error }:
+		return isRejectedOnly(e.Unwrap())
+	}
+	return err == errRejected
 }
 
 // isUsage reports whether an error is a mistake of the user's.

@@ -1,7 +1,10 @@
 package main
 
 import (
+	"errors"
 	"flag"
+	"fmt"
+	"io"
 	"os/exec"
 	"path/filepath"
 	"strconv"
@@ -54,5 +57,26 @@ func status(ts *testscript.TestScript, neg bool, args []string) {
 	}
 	if got != want {
 		ts.Fatalf("exit code %d, want %d", got, want)
+	}
+}
+
+// TestRejectedIsNoExcuse: what fails after some files were rejected is a failure.
+func TestRejectedIsNoExcuse(t *testing.T) {
+	for _, c := range []struct {
+		err  error
+		want int
+	}{
+		{errRejected, exitRejected},
+		{errors.Join(errRejected, nil), exitRejected},
+		{errors.Join(errRejected, errRejected), exitRejected},
+		{fmt.Errorf("ingest: %w", errRejected), exitRejected},
+		{errors.Join(errRejected, io.ErrShortWrite), exitFailed},
+		{errors.Join(io.ErrShortWrite, errors.Join(errRejected)), exitFailed},
+		{errors.Join(errRejected, errInterrupted), exitInterrupted},
+		{errors.Join(errRejected, usagef("wrong")), exitUsage},
+	} {
+		if got := rank(c.err); got != c.want {
+			t.Errorf("rank(%q) = %d, want %d", c.err, got, c.want)
+		}
 	}
 }
