@@ -33,6 +33,7 @@ func reprocessCommand() *cli.Command {
 			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files in work at the same time"},
 			shardFlag(),
 			&cli.IntFlag{Name: "combine", DefaultText: "none", Usage: "take the files' records from the `N` stores that --shard 1/N to N/N filled"},
+			&cli.BoolFlag{Name: "allow-rejected", DisableDefaultText: true, Usage: "exit with 0, not 3, where files were rejected, for schedulers that know success and failure only"},
 			asJSONFlag("plan, or what became of the run,"),
 		},
 		Action: func(c *cli.Context) error {
@@ -57,16 +58,24 @@ func reprocessCommand() *cli.Command {
 				return plan.print(c.App.Writer, o.json)
 			}
 			plan.ingest.pipeline.Workers = c.Int("workers")
-			if o.shard.Count > 0 {
-				return runStudyShard(c.Context, plan, o, c.App.Writer)
+			if err = reprocess(c, plan, o); c.Bool("allow-rejected") && isRejectedOnly(err) {
+				return nil
 			}
-			plan.ownShards(o.combine)
-			if o.combine > 0 {
-				plan.ingest.pipeline.Catalogue = nil // what it says came with the shards
-			}
-			return runReprocess(c.Context, plan, o, c.App.Writer)
+			return err
 		},
 	}
+}
+
+// reprocess carries out a plan, or its part in a shard.
+func reprocess(c *cli.Context, plan *studyPlan, o reprocessOptions) error {
+	if o.shard.Count > 0 {
+		return runStudyShard(c.Context, plan, o, c.App.Writer)
+	}
+	plan.ownShards(o.combine)
+	if o.combine > 0 {
+		plan.ingest.pipeline.Catalogue = nil // what it says came with the shards
+	}
+	return runReprocess(c.Context, plan, o, c.App.Writer)
 }
 
 func newReprocessOptions(c *cli.Context) (o reprocessOptions, err error) {
