@@ -14,13 +14,14 @@ import (
 // layers says what a package may import of ours, and why. A package that is
 // not listed may import nothing of ours; tests are free.
 var layers = map[string][]string{
-	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "pipeline/beside", "db", "query", "query/chart", "query/report"},                                    // wiring, no arithmetic and no SQL
+	"cmd/swaybook":       {"ingest", "pipeline", "pipeline/condition", "pipeline/demo", "pipeline/study", "pipeline/beside", "pipeline/cluster", "db", "query", "query/chart", "query/report"},                // wiring, no arithmetic and no SQL
 	"ingest":             {"ingest/miniseed", "ingest/fdsnxml", "ingest/archive", "ingest/tomlfile"},                                                                                                          // what one reader needs
 	"pipeline":           {"ingest", "ingest/archive", "db", "pipeline/spectrum", "pipeline/geodesy", "pipeline/likeness", "pipeline/condition", "pipeline/signal", "pipeline/intensity", "pipeline/quality"}, // the way in
 	"pipeline/demo":      {"pipeline/stochastic"},                                                                                                                                                             // invents files, knows nothing of readers
 	"db":                 {"migrations"},                                                                                                                                                                      // the only SQL
 	"pipeline/condition": {"pipeline/signal", "pipeline/internal/elementary"},                                                                                                                                 // the steps of recipes
 	"pipeline/beside":    {},
+	"pipeline/cluster":   {},
 	"pipeline/study":     {"ingest/tomlfile"},                                 // lines of keys
 	"pipeline/intensity": {"pipeline/signal"},                                 // Fourier amplitudes
 	"pipeline/quality":   {"pipeline/signal", "pipeline/internal/elementary"}, // means and integrals
