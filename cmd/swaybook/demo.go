@@ -5,12 +5,12 @@ import (
 	"errors"
 	"io"
 	"path/filepath"
-	"strings"
 
 	"github.com/urfave/cli/v2"
 
 	"swaybook/db"
 	"swaybook/pipeline"
+	"swaybook/pipeline/cluster"
 	"swaybook/pipeline/demo"
 	"swaybook/query"
 )
@@ -95,7 +95,7 @@ func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
 	if !o.rotation {
 		rotation = " --rotation=false"
 	}
-	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s%s\n", quoted(o.store), quoted(o.dir), quoted(written.Catalogue), rotation)
+	p.printf("\n$ swaybook --store %s ingest %s --catalogue %s%s\n", cluster.Quote(o.store), cluster.Quote(o.dir), cluster.Quote(written.Catalogue), rotation)
 	if p.err != nil {
 		return p.err
 	}
@@ -107,15 +107,7 @@ func runDemo(ctx context.Context, o demoOptions, w io.Writer) error {
 		return err
 	}
 	defer store.Close()
-	return demoQueries(ctx, store, quoted(o.store), w)
-}
-
-// quoted is a word as a shell wants it.
-func quoted(word string) string {
-	if strings.ContainsAny(word, " '\"$&;()") {
-		return "'" + strings.ReplaceAll(word, "'", `'\''`) + "'"
-	}
-	return word
+	return demoQueries(ctx, store, cluster.Quote(o.store), w)
 }
 
 // demoIngest runs the ingest. That the damaged files are rejected is the point
@@ -189,7 +181,7 @@ func demoReport(c *cli.Context, o demoOptions, w io.Writer) error {
 		return err
 	}
 	p := &printer{w: w}
-	p.printf("\n$ swaybook report %s\n", quoted(study))
+	p.printf("\n$ swaybook report %s\n", cluster.Quote(study))
 	if p.err != nil {
 		return p.err
 	}
@@ -200,8 +192,8 @@ func demoReport(c *cli.Context, o demoOptions, w io.Writer) error {
 	if err := makeReport(c, plan, plan.study.Report.Value); err != nil {
 		return err
 	}
-	p.printf("\nThe store is %s. Ask it something else: swaybook --store %s query --help\n", quoted(o.store), quoted(o.store))
-	p.printf("The report is %s\n", quoted(filepath.Join(o.dir, "report.html")))
+	p.printf("\nThe store is %s. Ask it something else: swaybook --store %s query --help\n", cluster.Quote(o.store), cluster.Quote(o.store))
+	p.printf("The report is %s\n", cluster.Quote(filepath.Join(o.dir, "report.html")))
 	return p.err
 }
 

@@ -16,6 +16,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline"
+	"swaybook/pipeline/cluster"
 	"swaybook/query"
 )
 
@@ -80,7 +81,7 @@ func holder(since time.Time) db.Holder {
 	}
 	words := []string{"swaybook"}
 	for _, word := range os.Args[1:] {
-		words = append(words, quoted(word))
+		words = append(words, cluster.Quote(word))
 	}
 	return db.Holder{PID: os.Getpid(), Host: host, Since: since, Command: strings.Join(words, " ")}
 }

@@ -10,6 +10,7 @@ import (
 	"time"
 
 	"swaybook/db"
+	"swaybook/pipeline/cluster"
 	"swaybook/query"
 	"swaybook/query/report"
 )
@@ -74,7 +75,7 @@ func isEqual(a, b *float64) bool { return a == b || a != nil && b != nil && *a =
 
 // notice tells of a run that is held back.
 func (m *paginator) notice(run *db.Run, d *driftReport) *report.Section {
-	study, store := quoted(filepath.Base(m.plan.study.File)), quoted(filepath.Base(m.plan.study.Store.Value))
+	study, store := cluster.Quote(filepath.Base(m.plan.study.File)), cluster.Quote(filepath.Base(m.plan.study.Store.Value))
 	s := &report.Section{ID: m.names.ID("held-back"), Title: "The newest result is held back", Lines: []string{
 		fmt.Sprintf("This page shows edition %d, which stays published. Edition %d, by a run of %s, is newer; %s.",
 			m.edition, m.held, run.Started.UTC().Format(time.DateTime+" UTC"), d.whyHeld()),

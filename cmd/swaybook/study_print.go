@@ -6,6 +6,7 @@ import (
 	"strings"
 	"text/tabwriter"
 
+	"swaybook/pipeline/cluster"
 	"swaybook/pipeline/study"
 )
 
@@ -229,7 +230,7 @@ func (p *studyPlan) words(settings []study.Setting) string {
 	for _, s := range settings {
 		word := s.Key
 		if s.Value != "true" {
-			word += "=" + quoted(p.study.Short(s.Value))
+			word += "=" + cluster.Quote(p.study.Short(s.Value))
 		}
 		words = append(words, word)
 	}

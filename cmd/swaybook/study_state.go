@@ -10,6 +10,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline/beside"
+	"swaybook/pipeline/cluster"
 	"swaybook/pipeline/study"
 )
 
@@ -170,7 +171,7 @@ func (r *studyRun) print(p *printer) {
 	}
 	r.printOutputs(p)
 	if s.Rejected != nil && *s.Rejected > 0 && s.Ingest == nil {
-		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", *s.Rejected, quoted(s.Store))
+		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", *s.Rejected, cluster.Quote(s.Store))
 	}
 	r.printEnd(p)
 }
@@ -202,7 +203,7 @@ func (r *studyRun) printEnd(p *printer) {
 		p.printf("Edition %d is published, before it was %d.\n", *s.Published, *s.Before)
 	case s.Outcome == outcomeHeld:
 		p.printf("Edition %d stays published; %d is held back. To look at it: query … --as-of %d; to publish it: swaybook --store %s runs publish %d\n",
-			*s.Published, *s.Edition, *s.Edition, quoted(s.Store), *s.Edition)
+			*s.Published, *s.Edition, *s.Edition, cluster.Quote(s.Store), *s.Edition)
 	case s.Outcome == outcomeUnchanged && isOther(s.Edition, s.Published):
 		p.printf("Edition %d stays published, as somebody wished; the newest is %d.\n", *s.Published, *s.Edition)
 	default:
