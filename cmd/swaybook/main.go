@@ -138,6 +138,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 			exportCommand(),
 			reportCommand(),
 			reprocessCommand(),
+			clusterCommand(),
 			runsCommand(),
 			pruneCommand(),
 			backupCommand(),

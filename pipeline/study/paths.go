@@ -25,8 +25,10 @@ func (u use) where() string {
 // checkPaths refuses to write to a place that is given twice, or that is read.
 func (r *reader) checkPaths(v Vocabulary) {
 	s := r.study
+	read, written := r.read(v), r.written()
+	s.Reads, s.Writes = settings(read), settings(written)
 	seen := map[string]use{}
-	for _, u := range slices.Concat(s.own(), r.read(v)) {
+	for _, u := range slices.Concat(s.own(), read) {
 		if _, known := seen[u.Value]; !known {
 			seen[u.Value] = u
 		}
@@ -36,13 +38,21 @@ func (r *reader) checkPaths(v Vocabulary) {
 			r.failAt(source.Line, "sources", "%s is given twice", s.Short(source.Value))
 		}
 	}
-	for _, u := range r.written() {
+	for _, u := range written {
 		if before, known := seen[u.Value]; known {
 			r.failAt(u.Line, u.key, "%s is the path of %s too", s.Short(u.Value), before.where())
 			continue
 		}
 		seen[u.Value] = u
 	}
+}
+
+func settings(uses []use) []Setting {
+	var out []Setting
+	for _, u := range uses {
+		out = append(out, Setting{Key: u.key, Text: u.Text})
+	}
+	return out
 }
 
 // own are files that nothing else may be.

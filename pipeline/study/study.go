@@ -24,6 +24,10 @@ type Study struct {
 	Metrics  Text
 	Report   Text // the page of all answers
 
+	// Reads and Writes are the paths of what a run reads and writes beside the study
+	// itself, with the keys that give them, in the order of the file.
+	Reads, Writes []Setting
+
 	Selections []Selection // in the order of the file, as are Products
 	Products   []Product
 }

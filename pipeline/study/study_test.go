@@ -80,6 +80,15 @@ func TestStudy(t *testing.T) {
 			{"catalogue", Text{"/region/catalogue.csv", 9}}, {"metadata", Text{"/region/a.xml", 10}}, {"metadata", Text{"/region/b.xml", 10}},
 			{"recipe", Text{"standard", 11}}, {"periods", Text{"0.02,0.05,1", 12}}, {"dt", Text{"0.005", 13}},
 		},
+		Reads: []Setting{
+			{"sources", Text{"/region/records", 4}}, {"sources", Text{"/data/more.zip", 5}}, {"catalogue", Text{"/region/catalogue.csv", 9}},
+			{"metadata", Text{"/region/a.xml", 10}}, {"metadata", Text{"/region/b.xml", 10}}, {"demand.bridges.structures", Text{"/region/bridges.csv", 36}},
+		},
+		Writes: []Setting{
+			{"store", Text{"/region/coast.db", 2}}, {"state", Text{"/region/out/last-run.json", 16}}, {"records.held.files", Text{"/region/out/records.CSV", 23}},
+			{"spectrum.rock-5.files", Text{"/region/out/rock.csv", 30}}, {"spectrum.rock-5.files", Text{"/region/out/rock.json", 30}},
+			{"demand.bridges.files", Text{"/region/out/bridges.txt", 37}},
+		},
 		Selections: []Selection{{"rock", 18, []Setting{where, since}}},
 		Products: []Product{
 			{Kind: Records, Name: "held", Line: 22, Files: []File{{Text{"/region/out/records.CSV", 23}, CSV}}},
