@@ -20,7 +20,7 @@ func jobs(study string) Jobs {
 	return Jobs{Name: "quays", Shards: 4, Workers: 2, MemoryMiB: 500, Program: "/opt/swaybook", Study: study}
 }
 
-var pods = Pods{Image: "registry.example/swaybook:1", Claims: []Claim{{Name: "region", Path: "/srv"}, {Name: "records", Path: "/data/y", IsReadOnly: true}}}
+var pods = Pods{Image: "swaybook:1", Claims: []Claim{{Name: "region", Path: "/srv"}, {Name: "records", Path: "/data/y", IsReadOnly: true}}}
 
 // TestGolden compares job files with those in testdata, which are also read by the types of
 // Kubernetes (testdata/cluster/kubernetes) and by the checker of scripts in .ci/run.
