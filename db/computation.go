@@ -105,8 +105,8 @@ func (t *Tx) setComputed(ctx context.Context, recordID int64, role string, gener
 }
 
 func (t *Tx) addSpectra(ctx context.Context, computationID int64, computed Spectra) error {
-	for i, text := range computed.sd {
-		if err := t.exec(ctx, `INSERT INTO spectrum (id, sd_m, crc32c) VALUES (?, ?, ?)`, mostDampings*computationID+int64(i), text, sealOf(text)); err != nil {
+	for i, sd := range computed.sd {
+		if err := t.exec(ctx, `INSERT INTO spectrum (id, sd_m, crc32c) VALUES (?, ?, ?)`, mostDampings*computationID+int64(i), sd, sealOf(sd)); err != nil {
 			return fmt.Errorf("store spectrum: %w", err)
 		}
 	}

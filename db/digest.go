@@ -15,7 +15,7 @@ import (
 )
 
 // digestVersion is raised whenever the canonical text of a state changes.
-const digestVersion = 1
+const digestVersion = 2
 
 // Digest returns the digest of what the store at path has published, as version and
 // SHA-256, of a text that names everything by what it is: it depends neither on ids, nor on
@@ -179,7 +179,7 @@ func stamp(at time.Time) string {
 	return at.UTC().Format(time.RFC3339Nano)
 }
 
-// computed reads the spectra as the texts that they are stored as, which are one for each
+// computed reads the spectra as the bytes that they are stored as, which are one for each
 // value.
 func (d *digester) computed(ctx context.Context) error {
 	rows, err := d.snapshot.tx.QueryContext(ctx, `SELECT k.record_id, k.role, coalesce(x.failure, ''), s.sd_m FROM `+d.snapshot.shown("computed")+` k
@@ -191,8 +191,8 @@ func (d *digester) computed(ctx context.Context) error {
 	for rows.Next() {
 		var id int64
 		var role, failure string
-		var text sql.RawBytes
-		if err := rows.Scan(&id, &role, &failure, &text); err != nil {
+		var sd sql.RawBytes
+		if err := rows.Scan(&id, &role, &failure, &sd); err != nil {
 			return err
 		}
 		r := d.role(id, role)
@@ -200,10 +200,10 @@ func (d *digester) computed(ctx context.Context) error {
 			r.spectra = sha256.New()
 		}
 		r.failure = failure
-		if len(text) > 0 {
+		if len(sd) > 0 {
 			r.dampings++
-			fmt.Fprintf(r.spectra, "%d ", len(text))
-			r.spectra.Write(text)
+			fmt.Fprintf(r.spectra, "%d ", len(sd))
+			r.spectra.Write(sd)
 		}
 	}
 	return rows.Err()

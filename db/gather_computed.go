@@ -177,12 +177,12 @@ func (p *Part) spectra(ctx context.Context, id int64) (s Spectra, err error) {
 	if err != nil {
 		return s, err
 	}
-	texts, err := collect(rows, func(t *sealedText) []any { return []any{&t.text, &t.seal} })
-	for i := range texts {
-		if texts[i].open() == nil {
+	found, err := collect(rows, func(v *sealedSpectrum) []any { return []any{&v.sd, &v.seal} })
+	for i := range found {
+		if found[i].open() == nil {
 			return s, err
 		}
-		s.sd = append(s.sd, texts[i].text)
+		s.sd = append(s.sd, found[i].sd)
 	}
 	if err == nil {
 		s.measures, err = p.measures(ctx, id)

@@ -48,11 +48,11 @@ func (s Spectra) Differences(computed Spectra) (out []Difference) {
 	return out
 }
 
-// differing counts the ordinates of two texts that differ, with the position of the first.
+// differing counts the ordinates of two spectra that differ, with the position of the first.
 func differing(a, b []byte) (n, first int) {
-	width := func(text []byte) int { return (len(text) + OrdinateWidth - 1) / OrdinateWidth }
-	at := func(text []byte, k int) string {
-		return string(text[min(k*OrdinateWidth, len(text)):min((k+1)*OrdinateWidth, len(text))])
+	width := func(sd []byte) int { return (len(sd) + OrdinateWidth - 1) / OrdinateWidth }
+	at := func(sd []byte, k int) string {
+		return string(sd[min(k*OrdinateWidth, len(sd)):min((k+1)*OrdinateWidth, len(sd))])
 	}
 	for k := max(width(a), width(b)) - 1; k >= 0; k-- {
 		if at(a, k) != at(b, k) {

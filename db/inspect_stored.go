@@ -19,8 +19,8 @@ func (i *Inspection) Lengths(ctx context.Context) error {
 			WHERE x.failure IS NULL GROUP BY x.id
 		), size AS (SELECT g.id, (SELECT count(*) FROM grid_damping d WHERE d.grid_id = g.id) AS dampings, (SELECT count(*) FROM grid_period p WHERE p.grid_id = g.id) AS periods FROM grid g)
 		SELECT coalesce((SELECT r.code || ' ' || k.role || ': ' FROM computed k JOIN record r ON r.id = k.record_id WHERE k.computation_id = h.id), '') ||
-			'computation ' || h.id || ' has spectra of ' || h.n || ' dampings and of ' || coalesce(least, 0) || ' to ' || coalesce(most, 0) || ' bytes, want ' || z.dampings || ' of ' || 24 * z.periods
-		FROM has h JOIN size z ON z.id = h.grid_id WHERE h.n <> z.dampings OR h.upto <> h.n OR h.least <> 24 * z.periods OR h.most <> h.least`)
+			'computation ' || h.id || ' has spectra of ' || h.n || ' dampings and of ' || coalesce(least, 0) || ' to ' || coalesce(most, 0) || ' bytes, want ' || z.dampings || ' of ' || 8 * z.periods
+		FROM has h JOIN size z ON z.id = h.grid_id WHERE h.n <> z.dampings OR h.upto <> h.n OR h.least <> 8 * z.periods OR h.most <> h.least`)
 }
 
 // OffGrid checks what is kept off the grid against its checksums, and returns how many rows
@@ -57,12 +57,12 @@ func (i *Inspection) OffGrid(ctx context.Context) (rows int, err error) {
 func (i *Inspection) Seals(ctx context.Context) error {
 	type row struct {
 		id   int64
-		text sql.RawBytes
+		sd   sql.RawBytes
 		seal int64
 	}
 	var damaged []int64
-	err := look(ctx, i, "spectrum", `SELECT id, crc32c, sd_m FROM spectrum`, nil, func(v *row) []any { return []any{&v.id, &v.seal, &v.text} }, func(v *row) {
-		if (sealedText{v.text, v.seal}).open() == nil {
+	err := look(ctx, i, "spectrum", `SELECT id, crc32c, sd_m FROM spectrum`, nil, func(v *row) []any { return []any{&v.id, &v.seal, &v.sd} }, func(v *row) {
+		if (sealedSpectrum{v.sd, v.seal}).open() == nil {
 			damaged = append(damaged, v.id)
 		}
 	})
@@ -130,16 +130,12 @@ func (i *Inspection) offGridOf(ctx context.Context, id int64) (kept KeptOffGrid,
 	return kept, err
 }
 
-// viewTolerance is what SQLite in pure Go may be off in reading decimals, where the
-// compiler fuses multiplications and additions.
-const viewTolerance = 4e-16
-
 // Ordinates compares the view ordinate with what questions read, of about so many records of
 // the published edition: to read ordinates one by one costs more than to solve for them, and
 // Structure compares what the view is. It returns the number of ordinates that it compared.
 func (i *Inspection) Ordinates(ctx context.Context, records int) (compared int, err error) {
-	if i.published.ID == 0 {
-		return 0, nil
+	if err := i.powers(ctx); err != nil || i.published.ID == 0 {
+		return 0, err
 	}
 	v, err := snapshotOf(ctx, i.tx, nothingShown, `id = ?`, i.published.ID)
 	if err != nil {
@@ -167,15 +163,38 @@ func (i *Inspection) Ordinates(ctx context.Context, records int) (compared int, 
 	return compared, nil
 }
 
+// powers checks what the view multiplies with.
+func (i *Inspection) powers(ctx context.Context) error {
+	type row struct {
+		exponent, leading int
+		factor            float64
+	}
+	rows := 0
+	err := look(ctx, i, "power", `SELECT exponent, leading, factor FROM power`, nil, func(v *row) []any { return []any{&v.exponent, &v.leading, &v.factor} }, func(v *row) {
+		rows++
+		leading := 1 << 52
+		if v.exponent == 0 {
+			leading = 0
+		}
+		if v.leading != leading || v.factor != math.Ldexp(1, max(v.exponent, 1)-1075) {
+			i.found(Fault{Table: "power", Text: fmt.Sprintf("exponent %d: not what was stored; the view ordinate is wrong", v.exponent)})
+		}
+	})
+	if err == nil && rows != 2047 {
+		i.found(Fault{Table: "power", Text: fmt.Sprintf("%d rows, want 2047; the view ordinate lacks values", rows)})
+	}
+	return err
+}
+
 func (i *Inspection) compareView(ctx context.Context, v *Snapshot, codes map[int64]string, role string, position int, damping float64, nth int64) (compared int, err error) {
 	periods := v.Generation.Grid.PeriodsS
 	want, expected := map[string][]float64{}, 0
-	err = v.Spectra(ctx, role, position, Span{0, len(periods)}, func(id int64, text Ordinates) error {
+	err = v.Spectra(ctx, role, position, Span{0, len(periods)}, func(id int64, stored Ordinates) error {
 		if id%nth != 0 {
 			return nil
 		}
 		sd := make([]float64, len(periods))
-		if text.Decode(sd) != nil {
+		if stored.Decode(sd) != nil {
 			i.found(Fault{Table: "spectrum", Record: codes[id], Role: role, Text: "not what was stored"})
 			return nil
 		}
@@ -207,7 +226,7 @@ func (i *Inspection) compareView(ctx context.Context, v *Snapshot, codes map[int
 			compared++
 			omega := 2 * math.Pi / r.period
 			for _, pair := range [][2]float64{{r.sd, sd[k]}, {r.v, sd[k] * omega}, {r.psa, sd[k] * omega * omega / 9.80665}} {
-				if !(math.Abs(pair[0]-pair[1]) <= 4*viewTolerance*math.Abs(pair[1])) {
+				if math.Float64bits(pair[0]) != math.Float64bits(pair[1]) {
 					i.found(Fault{Table: "ordinate", Record: r.code, Role: role, Text: fmt.Sprintf("at %g s and damping %g the view has %.17g, questions %.17g", r.period, damping, pair[0], pair[1])})
 					return
 				}

@@ -130,13 +130,13 @@ func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64
 	if err != nil {
 		return m, err
 	}
-	m.sd, err = openTexts(rows)
+	m.sd, err = openSpectra(rows)
 	return m, err
 }
 
-// openTexts reads spectra, nil for each that is not what was stored.
-func openTexts(rows *sql.Rows) (out [][]byte, err error) {
-	found, err := collect(rows, func(s *sealedText) []any { return []any{&s.seal, &s.text} })
+// openSpectra reads spectra, nil for each that is not what was stored.
+func openSpectra(rows *sql.Rows) (out [][]byte, err error) {
+	found, err := collect(rows, func(s *sealedSpectrum) []any { return []any{&s.seal, &s.sd} })
 	for _, s := range found {
 		out = append(out, s.open())
 	}
@@ -167,11 +167,11 @@ func (m StoredMotion) DecodeSD() ([]float64, error) {
 		return nil, m.damaged(fmt.Errorf("spectra of %d dampings, want %d", len(m.sd), m.dampings))
 	}
 	sd := make([]float64, len(m.sd)*m.periods)
-	for i, text := range m.sd {
-		if text == nil {
+	for i, stored := range m.sd {
+		if stored == nil {
 			return nil, m.damaged(fmt.Errorf("spectrum: %w", errSealed))
 		}
-		if err := Ordinates(text).Decode(sd[i*m.periods : (i+1)*m.periods]); err != nil {
+		if err := Ordinates(stored).Decode(sd[i*m.periods : (i+1)*m.periods]); err != nil {
 			return nil, m.damaged(err)
 		}
 	}

@@ -63,9 +63,9 @@ func TestUnrotatedPairs(t *testing.T) {
 		t.Errorf("%d spectra and %d measures, want 4 and 2", spectra, measures)
 	}
 	err := s.View(t.Context(), func(v *Snapshot) error {
-		return v.Spectra(t.Context(), RoleRotD50, 1, Span{0, 3}, func(record int64, text Ordinates) error {
+		return v.Spectra(t.Context(), RoleRotD50, 1, Span{0, 3}, func(record int64, stored Ordinates) error {
 			sd := make([]float64, 3)
-			if err := text.Decode(sd); err != nil || record != 2 || !slices.Equal(sd, []float64{8, 9, 10}) {
+			if err := stored.Decode(sd); err != nil || record != 2 || !slices.Equal(sd, []float64{8, 9, 10}) {
 				t.Errorf("rotated SD of record %d = %v, %v", record, sd, err)
 			}
 			return nil

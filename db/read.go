@@ -161,8 +161,8 @@ type Span struct{ From, To int }
 
 // Spectra reads the SD spectra of a role at the grid's damping of this position,
 // at the periods of the span only, and calls f with each in the order of the
-// record's id. Each text holds one value a period, unless it is damaged: none where it is
-// not that of its checksum, which is of all periods. f must not keep it.
+// record's id. Each has one value a period, unless it is damaged: none where it is not what
+// its checksum, which is of all periods, was taken of. f must not keep it.
 func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
 	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, s.crc32c, s.sd_m FROM `+s.shown("computed")+` k LEFT JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
 		WHERE k.role = ?2 ORDER BY k.record_id`, dampingPosition, role)
@@ -184,11 +184,11 @@ func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int
 		if !seal.Valid {
 			continue
 		}
-		text := sealedText{raw, seal.Int64}.open()
-		if len(text) >= periods.To*OrdinateWidth {
-			text = text[periods.From*OrdinateWidth : periods.To*OrdinateWidth]
+		sd := sealedSpectrum{raw, seal.Int64}.open()
+		if len(sd) >= periods.To*OrdinateWidth {
+			sd = sd[periods.From*OrdinateWidth : periods.To*OrdinateWidth]
 		}
-		if err := f(id, Ordinates(text)); err != nil {
+		if err := f(id, Ordinates(sd)); err != nil {
 			return err
 		}
 	}

@@ -18,18 +18,18 @@ var castagnoli = crc32.MakeTable(crc32.Castagnoli)
 // has become another.
 func sealOf(data []byte) int64 { return int64(crc32.Checksum(data, castagnoli)) }
 
-// sealedText is a text as it is stored, with its checksum.
-type sealedText struct {
-	text []byte
+// sealedSpectrum are ordinates as they are stored, with their checksum.
+type sealedSpectrum struct {
+	sd   []byte
 	seal int64
 }
 
-// open returns the text, nil where it is not what was stored.
-func (s sealedText) open() []byte {
-	if sealOf(s.text) != s.seal {
+// open returns the ordinates, nil where they are not what was stored.
+func (s sealedSpectrum) open() []byte {
+	if sealOf(s.sd) != s.seal {
 		return nil
 	}
-	return s.text
+	return s.sd
 }
 
 // sealer makes checksums of rows, in room of its own.

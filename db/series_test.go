@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
-	"slices"
 	"strconv"
 	"strings"
 	"testing"
@@ -190,80 +189,6 @@ func FuzzDecodeSamples(f *testing.F) {
 	})
 }
 
-func TestOrdinatesRoundTrip(t *testing.T) {
-	values := []float64{0, 1, 0.1, 1.0 / 3, 1e-12, 123.456, 5e-324, math.MaxFloat64, math.SmallestNonzeroFloat64, -2.5e-308}
-	text := encodeOrdinates(nil, values)
-	if len(text) != OrdinateWidth*len(values) {
-		t.Fatalf("%d bytes, want %d", len(text), OrdinateWidth*len(values))
-	}
-	got := make([]float64, len(values))
-	if err := Ordinates(text).Decode(got); err != nil {
-		t.Fatal(err)
-	}
-	for i := range values {
-		if got[i] != values[i] {
-			t.Errorf("value %d = %v, want %v", i, got[i], values[i])
-		}
-	}
-	if err := Ordinates(text[1:]).Decode(got); err == nil {
-		t.Error("no error for a short spectrum")
-	}
-	text[5] = 'x'
-	if err := Ordinates(text).Decode(got); err == nil {
-		t.Error("no error for a damaged spectrum")
-	}
-}
-
-// Every double comes back, whatever its size and digits.
-func TestOrdinatesOfAllSizesRoundTrip(t *testing.T) {
-	const seed = 5
-	rng := rand.New(rand.NewPCG(seed, 1))
-	values := make([]float64, 1000)
-	got := make([]float64, len(values))
-	for round := range 300 {
-		for i := range values {
-			switch bits := rng.Uint64(); i % 4 {
-			case 0: // any double
-				values[i] = math.Float64frombits(bits)
-			case 1: // of the size of spectra
-				values[i] = math.Exp(60*rng.Float64() - 55)
-			case 2: // next to a power of two
-				values[i] = math.Float64frombits(uint64(900+bits%200)<<52 - 2 + bits>>40%4)
-			case 3: // next to a power of ten
-				values[i] = math.Nextafter(math.Pow10(int(bits%60)-50), float64(bits%2))
-			}
-			if math.IsNaN(values[i]) || math.IsInf(values[i], 0) {
-				values[i] = 0
-			}
-		}
-		if err := Ordinates(encodeOrdinates(nil, values)).Decode(got); err != nil {
-			t.Fatalf("seed %d, round %d: %v", seed, round, err)
-		}
-		for i, x := range values {
-			if math.Float64bits(got[i]) != math.Float64bits(x) {
-				t.Fatalf("seed %d, round %d: %v comes back as %v", seed, round, x, got[i])
-			}
-		}
-	}
-}
-
-// Whatever byte stands where in an ordinate, it is read as strconv reads it.
-func TestOrdinatesWithAnyByte(t *testing.T) {
-	valid := encodeOrdinates(nil, []float64{7.290123456789e-5})
-	for at := range valid {
-		for c := range 256 {
-			text := slices.Clone(valid)
-			text[at] = byte(c)
-			want, errWant := strconv.ParseFloat(strings.TrimLeft(string(text), " "), 64)
-			got := []float64{0}
-			err := Ordinates(text).Decode(got)
-			if (err == nil) != (errWant == nil) || err == nil && got[0] != want {
-				t.Errorf("%q = %v, %v, want %v, %v", text, got[0], err, want, errWant)
-			}
-		}
-	}
-}
-
 // benchmarkSeries are 8000 samples each: of six decimals in cm/s², of eight digits
 // and an exponent in g, and full doubles.
 func benchmarkSeries(b *testing.B, run func(b *testing.B, samples []float64, unit float64)) {
@@ -309,18 +234,4 @@ func BenchmarkDecodeSamples(b *testing.B) {
 			}
 		}
 	})
-}
-
-func BenchmarkDecodeOrdinates(b *testing.B) {
-	values := make([]float64, 251)
-	for i := range values {
-		values[i] = math.Exp(-float64(i) / 17)
-	}
-	text := encodeOrdinates(nil, values)
-	b.SetBytes(int64(8 * len(values)))
-	for b.Loop() {
-		if err := Ordinates(text).Decode(values); err != nil {
-			b.Fatal(err)
-		}
-	}
 }

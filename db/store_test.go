@@ -169,9 +169,9 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		for _, periods := range []Span{{0, 3}, {1, 2}, {2, 3}, {0, 2}} {
 			var ids []int64
 			sd := make([]float64, periods.To-periods.From)
-			err = v.Spectra(t.Context(), RoleH2, 1, periods, func(id int64, text Ordinates) error {
+			err = v.Spectra(t.Context(), RoleH2, 1, periods, func(id int64, stored Ordinates) error {
 				ids = append(ids, id)
-				return text.Decode(sd)
+				return stored.Decode(sd)
 			})
 			want := []float64{11, 12, 13}[periods.From:periods.To]
 			if err != nil || !slices.Equal(ids, []int64{cs[1].RecordID}) || !slices.Equal(sd, want) {
@@ -238,9 +238,9 @@ func TestRolesChangePlaces(t *testing.T) {
 		if cs[0].Role != RoleH1 || cs[0].PGA != 2 || cs[0].Label != RoleH2 {
 			t.Errorf("first component = %+v", cs[0])
 		}
-		return v.Spectra(t.Context(), RoleH1, 0, Span{0, 1}, func(_ int64, text Ordinates) error {
+		return v.Spectra(t.Context(), RoleH1, 0, Span{0, 1}, func(_ int64, stored Ordinates) error {
 			sd := []float64{0}
-			if err := text.Decode(sd); err != nil || sd[0] != 2 {
+			if err := stored.Decode(sd); err != nil || sd[0] != 2 {
 				t.Errorf("sd = %v, %v", sd, err)
 			}
 			return nil

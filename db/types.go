@@ -190,15 +190,14 @@ type Conditioning struct {
 
 // Spectra is what is computed of one component, in the form in which it is stored.
 type Spectra struct {
-	sd           [][]byte // text by damping
+	sd           [][]byte // ordinates by damping
 	measures     map[string]float64
 	conditioning *Conditioning
 }
 
 // NewSpectra takes SD in m for every damping of the grid (outer) at every period
 // (inner), the measures by name, and what was done to the component before, nil for
-// nothing. To write the numbers takes longer than to store them, and is not left to the
-// transaction that does that.
+// nothing.
 func NewSpectra(sd [][]float64, measures map[string]float64, conditioning *Conditioning) Spectra {
 	s := Spectra{measures: measures, conditioning: conditioning}
 	for _, values := range sd {

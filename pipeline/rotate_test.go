@@ -162,9 +162,9 @@ func stored(t *testing.T, store *db.Store, role string) (out []float64) {
 	err := store.View(t.Context(), func(v *db.Snapshot) error {
 		for d := range v.Generation.Grid.Dampings {
 			periods := len(v.Generation.Grid.PeriodsS)
-			err := v.Spectra(t.Context(), role, d, db.Span{To: periods}, func(_ int64, text db.Ordinates) error {
+			err := v.Spectra(t.Context(), role, d, db.Span{To: periods}, func(_ int64, stored db.Ordinates) error {
 				out = append(out, make([]float64, periods)...)
-				return text.Decode(out[len(out)-periods:])
+				return stored.Decode(out[len(out)-periods:])
 			})
 			if err != nil {
 				return err

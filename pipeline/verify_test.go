@@ -196,8 +196,8 @@ func TestDigestTellsEveryChange(t *testing.T) {
 	run(t, store, regionOptions(t, dir, 2, files...))
 	want, whole := digestOf(t, store), contentOf(t, store)
 	changes := []string{
-		`UPDATE spectrum SET sd_m = cast(replace(cast(sd_m AS TEXT), '1', '2') AS BLOB) WHERE id = (SELECT min(id) FROM spectrum)`,
-		`UPDATE spectrum SET sd_m = cast(replace(cast(sd_m AS TEXT), '1', '2') AS BLOB) WHERE id = (SELECT max(id) FROM spectrum)`,
+		`UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT min(id) FROM spectrum)`,
+		`UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT max(id) FROM spectrum)`,
 		`DELETE FROM spectrum WHERE id = (SELECT max(id) FROM spectrum)`,
 		`UPDATE measure SET value = value * 1.0000000000000002 WHERE computation_id = 1 AND name = 'pga_m_s2'`,
 		`DELETE FROM measure WHERE computation_id = 1 AND name = 'arias_m_s'`,
@@ -263,8 +263,8 @@ func TestVerifyFindsFaults(t *testing.T) {
 		{"series", `UPDATE series SET data = cast(data || x'7f7f' AS BLOB) WHERE id = 2`},
 		{"series", `UPDATE series SET sha256 = 'another' WHERE id = 2`},
 		{"series", `INSERT INTO series (sha256, data) VALUES ('of nobody', x'00')`},
-		{"spectrum", `UPDATE spectrum SET sd_m = cast(replace(cast(sd_m AS TEXT), '1', '2') AS BLOB) WHERE id = 256`},
-		{"spectrum", `UPDATE spectrum SET sd_m = cast(replace(cast(sd_m AS TEXT), '1', '2') AS BLOB) WHERE id = 256 * ` + pair},
+		{"spectrum", `UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = 256`},
+		{"spectrum", `UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = 256 * ` + pair},
 		{"spectrum", `UPDATE spectrum SET sd_m = substr(sd_m, 2) WHERE id = 257`},
 		{"spectrum", `DELETE FROM spectrum WHERE id = 257`},
 		{"spectrum", `INSERT INTO spectrum (id, crc32c, sd_m) VALUES (256 * 99999, 0, x'20')`},
@@ -282,6 +282,8 @@ func TestVerifyFindsFaults(t *testing.T) {
 		{"off_grid", `UPDATE off_grid SET sd_m = cast(sd_m || x'00' AS BLOB)`},
 		{"off_grid", `UPDATE off_grid SET sd_m = (SELECT o.sd_m FROM off_grid o WHERE o.sd_m <> off_grid.sd_m LIMIT 1) WHERE computation_id = (SELECT min(computation_id) FROM off_grid)`},
 		{"off_grid_block", `UPDATE off_grid_block SET oscillators = x'00'`},
+		{"power", `UPDATE power SET factor = 1.0000000000000002 * factor WHERE exponent = 1000`},
+		{"power", `DELETE FROM power WHERE exponent = 0`},
 		{"finding", `INSERT INTO finding (component_id, flag, value, bound, words) VALUES (99999, 'another', 1, 1, '')`},
 		{"component", `UPDATE component SET source_id = 99999 WHERE id = 1`},
 		{"edition", `UPDATE edition SET state = 'superseded'`},

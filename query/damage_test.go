@@ -111,7 +111,7 @@ func TestDamagedSpectraAreLeftOut(t *testing.T) {
 	const where = ` WHERE id = (SELECT 256 * k.computation_id FROM computed k JOIN record r ON r.id = k.record_id WHERE k.role = ? AND r.code = 'R2')`
 	for name, damage := range map[string]string{
 		"cut":     `UPDATE spectrum SET sd_m = substr(sd_m, 1, 30)` + where,
-		"garbled": `UPDATE spectrum SET sd_m = CAST(replace(CAST(sd_m AS TEXT), 'e', 'x') AS BLOB)` + where,
+		"garbled": `UPDATE spectrum SET sd_m = CAST(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB)` + where,
 		"gone":    `DELETE FROM spectrum` + where,
 	} {
 		t.Run(name, func(t *testing.T) {

@@ -37,12 +37,12 @@ type part struct {
 // them.
 type batch struct {
 	parts []part
-	text  []byte
+	sd    []byte
 }
 
-// batchText is about the size of a batch in bytes: large against the cost of
+// batchBytes is about the size of a batch in bytes: large against the cost of
 // handing it over, small against the processor's cache.
-const batchText = 256 << 10
+const batchBytes = 256 << 10
 
 // newReader takes the positions of the stored periods in those of o, and the
 // grid's positions of all periods of o.
@@ -149,9 +149,9 @@ func (r *reader) fetch(ctx context.Context, snapshot *db.Snapshot, position int,
 			next++
 			return nil
 		}
-		b.parts, b.text = append(b.parts, wanted[next]), append(b.text, sd...)
+		b.parts, b.sd = append(b.parts, wanted[next]), append(b.sd, sd...)
 		next++
-		if len(b.text) < batchText {
+		if len(b.sd) < batchBytes {
 			return nil
 		}
 		return send()
@@ -163,7 +163,7 @@ func (r *reader) fetch(ctx context.Context, snapshot *db.Snapshot, position int,
 	return lacking, send()
 }
 
-// width is the length of the text of one stored spectrum.
+// width is the length of one stored spectrum in bytes.
 func (r *reader) width() int { return db.OrdinateWidth * (r.span.To - r.span.From) }
 
 // decodeAll empties the channel.
@@ -172,7 +172,7 @@ func (r *reader) decodeAll(full <-chan *batch) {
 	picked := make([]float64, len(r.columns))
 	for b := range full {
 		r.decode(b, sd, picked)
-		b.parts, b.text = b.parts[:0], b.text[:0]
+		b.parts, b.sd = b.parts[:0], b.sd[:0]
 		r.batches.Put(b)
 	}
 }
@@ -181,7 +181,7 @@ func (r *reader) decodeAll(full <-chan *batch) {
 func (r *reader) decode(b *batch, sd, picked []float64) {
 	width := r.width()
 	for k, p := range b.parts {
-		if err := db.Ordinates(b.text[k*width : (k+1)*width]).Decode(sd); err != nil {
+		if err := db.Ordinates(b.sd[k*width : (k+1)*width]).Decode(sd); err != nil {
 			r.unfit.add(p.motion, reasonDamaged)
 			continue
 		}

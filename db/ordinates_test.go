@@ -1,0 +1,190 @@
+package db
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"os/exec"
+	"path/filepath"
+	"slices"
+	"strconv"
+	"strings"
+	"testing"
+)
+
+// anySD are values of every size that is not negative, next to powers of two and ten among
+// them.
+func anySD(n int, seed uint64) []float64 {
+	rng := rand.New(rand.NewPCG(seed, 1))
+	out := []float64{0, 1, 0.1, 1.0 / 3, 5e-324, 2.5e-308, 0x1p-1022, math.Nextafter(0x1p-1022, 0), math.MaxFloat64}
+	for i := len(out); i < n; i++ {
+		var x float64
+		switch bits := rng.Uint64(); i % 5 {
+		case 0: // any double
+			x = math.Float64frombits(bits >> 1)
+		case 1: // of the size of spectra
+			x = math.Exp(60*rng.Float64() - 55)
+		case 2: // next to a power of two
+			x = math.Float64frombits(uint64(900+bits%200)<<52 - 2 + bits>>40%4)
+		case 3: // next to a power of ten
+			x = math.Nextafter(math.Pow10(int(bits%60)-50), float64(bits%2))
+		case 4: // subnormal
+			x = math.Float64frombits(bits >> 12)
+		}
+		if math.IsNaN(x) || math.IsInf(x, 0) {
+			x = 0
+		}
+		out = append(out, x)
+	}
+	return out
+}
+
+func firstUnlike(got, want []float64) (text string) {
+	for i := range want {
+		if i >= len(got) || math.Float64bits(got[i]) != math.Float64bits(want[i]) {
+			return fmt.Sprintf("value %d of %d is not %v: %v", i, len(got), want[i], got[i:min(i+1, len(got))])
+		}
+	}
+	return ""
+}
+
+func TestOrdinatesRoundTrip(t *testing.T) {
+	values := anySD(1000, 5)
+	data := encodeOrdinates(nil, values)
+	if len(data) != OrdinateWidth*len(values) {
+		t.Fatalf("%d bytes, want %d", len(data), OrdinateWidth*len(values))
+	}
+	got := make([]float64, len(values))
+	if err := Ordinates(data).Decode(got); err != nil {
+		t.Fatal(err)
+	}
+	if text := firstUnlike(got, values); text != "" {
+		t.Error(text)
+	}
+	if err := Ordinates(data[1:]).Decode(got); err == nil {
+		t.Error("no error for a short spectrum")
+	}
+}
+
+// decimals are values as earlier programs stored them.
+func decimals(values []float64) (out []byte) {
+	for _, x := range values {
+		out = fmt.Appendf(out, "%24s", strconv.FormatFloat(x, 'e', 16, 64))
+	}
+	return out
+}
+
+// Decimals become the doubles of which they were written.
+func TestDoublesOfDecimals(t *testing.T) {
+	values := anySD(100_000, 6)
+	if !slices.Equal(doublesOfDecimals(decimals(values)), encodeOrdinates(nil, values)) {
+		t.Error("not the values that were written")
+	}
+	for _, damaged := range []string{"1", "  x.2345678901234567e-04", "  1.2345678901234567x-04", " -1.2345678901234567e-04"} {
+		if data := doublesOfDecimals([]byte(damaged)); data != nil {
+			t.Errorf("%q became %x", damaged, data)
+		}
+	}
+}
+
+// viewStore is a store of one spectrum, which has these SD at as many periods.
+func viewStore(t *testing.T, sd []float64) *Store {
+	t.Helper()
+	s := newStore(t)
+	grid := Grid{Dampings: []float64{0.05}}
+	for i := range sd {
+		grid.PeriodsS = append(grid.PeriodsS, 0.01+0.001*float64(i))
+	}
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		_, err := tx.StartRun(ctx, "ingest", "test", startsAt)
+		if err != nil {
+			return err
+		}
+		g, err := tx.PutGeneration(ctx, Recipe{Name: "as-delivered", Steps: "[]"}, grid, testSolver)
+		if err != nil {
+			return err
+		}
+		return errors.Join(add(ctx, tx, g, "R", RoleH1, 1), tx.exec(ctx, `UPDATE spectrum SET sd_m = ?`, encodeOrdinates(nil, sd)))
+	})
+	return s
+}
+
+// sdOf is the one column of a query.
+func sdOf(t *testing.T, q queryer, query string) []float64 {
+	t.Helper()
+	rows, err := q.QueryContext(t.Context(), query)
+	if err != nil {
+		t.Fatal(err)
+	}
+	out, err := collect(rows, func(x *float64) []any { return []any{x} })
+	if err != nil {
+		t.Fatal(err)
+	}
+	return out
+}
+
+// The view has the very doubles that are stored, in this program and in any other.
+func TestViewHasTheStoredDoubles(t *testing.T) {
+	want := anySD(5000, 7)
+	s := viewStore(t, want)
+	if text := firstUnlike(sdOf(t, s.read, `SELECT sd_m FROM ordinate ORDER BY period_s`), want); text != "" {
+		t.Error(text)
+	}
+	client, err := exec.LookPath("sqlite3")
+	if err != nil {
+		t.Skip("sqlite3 is not installed")
+	}
+	copied := filepath.Join(t.TempDir(), "copied.db")
+	command := exec.CommandContext(t.Context(), client, copied)
+	command.Env = append(command.Environ(), "HOME="+t.TempDir())
+	command.Stdin = strings.NewReader(fmt.Sprintf("ATTACH '%s' AS store; CREATE TABLE copied AS SELECT period_s, sd_m FROM store.ordinate;", s.path))
+	if text, err := command.CombinedOutput(); err != nil {
+		t.Fatalf("%v: %s", err, text)
+	}
+	handle, err := sql.Open("sqlite", copied)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer handle.Close()
+	if text := firstUnlike(sdOf(t, handle, `SELECT sd_m FROM copied ORDER BY period_s`), want); text != "" {
+		t.Error("sqlite3: " + text)
+	}
+}
+
+// Of a spectrum that is cut the view has what is whole, and nothing instead of the rest.
+func TestViewOfACutSpectrum(t *testing.T) {
+	want := anySD(20, 8)
+	s := viewStore(t, want)
+	for _, c := range []struct{ bytes, values int }{{20 * OrdinateWidth, 20}, {20*OrdinateWidth - 1, 19}, {12*OrdinateWidth + 7, 12}, {0, 0}} {
+		if _, err := s.write.Exec(`UPDATE spectrum SET sd_m = substr(sd_m, 1, ?)`, c.bytes); err != nil {
+			t.Fatal(err)
+		}
+		got := sdOf(t, s.read, `SELECT sd_m FROM ordinate ORDER BY period_s`)
+		if text := firstUnlike(got, want[:c.values]); text != "" || len(got) != c.values {
+			t.Errorf("of %d bytes %d values: %s", c.bytes, len(got), text)
+		}
+	}
+}
+
+func BenchmarkEncodeOrdinates(b *testing.B) {
+	values := anySD(251, 9)
+	var data []byte
+	b.SetBytes(int64(8 * len(values)))
+	for b.Loop() {
+		data = encodeOrdinates(data[:0], values)
+	}
+}
+
+func BenchmarkDecodeOrdinates(b *testing.B) {
+	values := anySD(251, 9)
+	data := encodeOrdinates(nil, values)
+	b.SetBytes(int64(8 * len(values)))
+	for b.Loop() {
+		if err := Ordinates(data).Decode(values); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
