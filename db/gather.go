@@ -51,7 +51,7 @@ type gathering struct {
 func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, tell func(done, total int)) (Gathered, error) {
 	g := &gathering{store: s, part: part, generation: generationID, tell: tell}
 	err := g.count(ctx)
-	for _, step := range []func(context.Context) error{g.events, g.files, g.gone, g.computations} {
+	for _, step := range []func(context.Context) error{g.events, g.files, g.gone, g.computations, g.end} {
 		if err == nil {
 			err = step(ctx)
 		}
@@ -245,6 +245,10 @@ func ahead[T any](ctx context.Context, read func(context.Context, func(T) error)
 		return nil
 	})
 	return group.Wait()
+}
+
+func (g *gathering) end(ctx context.Context) error {
+	return g.update(ctx, 0, func(t *Tx) error { return t.EndGathering(ctx, g.part.Number) })
 }
 
 // gone forgets what the shard does not have any more.

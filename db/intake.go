@@ -156,6 +156,33 @@ func (s *Store) CountIntake(ctx context.Context, key IntakeKey) (upTo, all int, 
 	return upTo, all, nil
 }
 
+// BeginGathering notes that these shards are about to be taken over.
+func (t *Tx) BeginGathering(ctx context.Context, shards []int) error {
+	for _, n := range shards {
+		if err := t.exec(ctx, `INSERT OR IGNORE INTO gathering (shard) VALUES (?)`, n); err != nil {
+			return fmt.Errorf("note what is taken over: %w", err)
+		}
+	}
+	return nil
+}
+
+// EndGathering notes that what the store has of a shard is what the shard has.
+func (t *Tx) EndGathering(ctx context.Context, shard int) error {
+	if err := t.exec(ctx, `DELETE FROM gathering WHERE shard = ?`, shard); err != nil {
+		return fmt.Errorf("note what is taken over: %w", err)
+	}
+	return nil
+}
+
+// Gathering returns the shards whose taking over has begun and not ended.
+func (t *Tx) Gathering(ctx context.Context) ([]int, error) {
+	rows, err := t.tx.QueryContext(ctx, `SELECT shard FROM gathering ORDER BY shard`)
+	if err != nil {
+		return nil, fmt.Errorf("read what is taken over: %w", err)
+	}
+	return collect(rows, func(n *int) []any { return []any{n} })
+}
+
 // GatheredShards returns the numbers of the shards of which the store has something.
 func (s *Store) GatheredShards(ctx context.Context) ([]int, error) {
 	rows, err := s.read.QueryContext(ctx, `SELECT shard FROM intake_events ORDER BY shard`)

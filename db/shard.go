@@ -14,7 +14,10 @@ type Shard struct{ Number, Count int }
 func (s Shard) IsCombined() bool { return s.Number == 0 }
 
 func (s Shard) String() string {
-	if s.IsCombined() {
+	switch {
+	case s.Count == 0:
+		return "no shard"
+	case s.IsCombined():
 		return fmt.Sprintf("what is combined of %d shards", s.Count)
 	}
 	return fmt.Sprintf("shard %d of %d", s.Number, s.Count)
@@ -49,24 +52,24 @@ func shardOf(ctx context.Context, q queryer) (s Shard, ok bool, err error) {
 	return found[0], true, nil
 }
 
-// SetShard says which part of an archive the store shall have. One that has another part, or
-// records and no part, is refused.
-func (t *Tx) SetShard(ctx context.Context, s Shard) error {
-	held, ok, err := t.Shard(ctx)
-	switch {
-	case err != nil || held == s:
-		return err
-	case ok:
-		return fmt.Errorf("the store is %s, not %s: each part of an archive needs a store of its own", held, s)
-	}
+// IsUsed reports whether anything was read into the store, or published.
+func (t *Tx) IsUsed(ctx context.Context) (bool, error) {
 	used, err := t.idOf(ctx, `SELECT EXISTS (SELECT 1 FROM source_file) OR EXISTS (SELECT 1 FROM edition)`)
 	if err != nil {
-		return fmt.Errorf("set shard: %w", err)
+		return false, fmt.Errorf("look for records: %w", err)
 	}
-	if used != 0 {
-		return fmt.Errorf("the store holds records already, but not as %s: name a new store", s)
+	return used != 0, nil
+}
+
+// SetShard says which part of an archive the store is to have from now on; the zero value has
+// it be one that has all that it is given. What was kept for combining is forgotten, the
+// working state is left for the run to make anew.
+func (t *Tx) SetShard(ctx context.Context, s Shard) error {
+	err := errors.Join(t.ClearIntake(ctx), t.exec(ctx, `DELETE FROM gathering`), t.exec(ctx, `DELETE FROM shard`))
+	if err == nil && s.Count > 0 {
+		err = t.exec(ctx, `INSERT INTO shard (id, number, count, state) VALUES (1, ?, ?, ?)`, s.Number, s.Count, RebuildChanged)
 	}
-	if err := t.exec(ctx, `INSERT INTO shard (id, number, count, state) VALUES (1, ?, ?, ?)`, s.Number, s.Count, RebuildWhole); err != nil {
+	if err != nil {
 		return fmt.Errorf("set shard: %w", err)
 	}
 	return nil

@@ -167,14 +167,58 @@ func (c *combining) begin(ctx context.Context, opts Options) (s state, err error
 	return s, nil
 }
 
-// claim makes the store one that shards are combined into, of this study or of none.
+// claim makes the store one that shards of this split are combined into, of this study or of
+// none, and notes that the parts are being taken over. A shard of which a run before took over
+// some must be among them: what the store has of it is neither old nor new.
 func (c *combining) claim(ctx context.Context, tx *db.Tx) error {
 	if c.study.Name == "" {
 		if err := refuseFollowed(ctx, tx); err != nil {
 			return err
 		}
 	}
-	return tx.SetShard(ctx, db.Shard{Count: c.count()})
+	held, _, err := tx.Shard(ctx)
+	if err != nil {
+		return err
+	}
+	if of := (db.Shard{Count: c.count()}); held != of {
+		if err := errors.Join(c.checkStore(ctx, tx, held), tx.SetShard(ctx, of)); err != nil {
+			return err
+		}
+	}
+	begun, err := tx.Gathering(ctx)
+	if err != nil {
+		return err
+	}
+	var given []int
+	for _, p := range c.parts {
+		given = append(given, p.Number)
+	}
+	for _, n := range begun {
+		if !slices.Contains(given, n) {
+			return fmt.Errorf("shard %d of %d was being taken over when a run before was stopped: give it again", n, c.count())
+		}
+	}
+	return tx.BeginGathering(ctx, given)
+}
+
+// checkStore refuses to combine into a store that is another shard, or of what others read:
+// only a study's own may come to be combined. What is combined of another split needs all
+// parts, as everything of before goes.
+func (c *combining) checkStore(ctx context.Context, tx *db.Tx, held db.Shard) error {
+	isUsed, err := tx.IsUsed(ctx)
+	switch {
+	case err != nil:
+		return err
+	case held.Count > 0 && !held.IsCombined():
+		return fmt.Errorf("the store is %s: name another to combine into", held)
+	case !isUsed:
+		return nil
+	case held.Count == 0 && c.study.Name == "":
+		return errors.New("the store holds records that were not combined: name a new one")
+	case len(c.parts) < c.count():
+		return fmt.Errorf("the store is %s: give all %d shards", held, c.count())
+	}
+	return nil
 }
 
 // gather takes over the shards, one after the other.

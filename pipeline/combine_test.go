@@ -63,6 +63,12 @@ func TestACombinationGoesOn(t *testing.T) {
 	shards := shardsOf(t, 2, opts)
 	opts.SkipRotation = false
 	store, stops := newStore(t), 0
+	alone := func() {
+		t.Helper()
+		if _, err := combineInto(t.Context(), t, store, shards[1:], opts); err == nil || !strings.Contains(err.Error(), "shard 1 of 2 was being taken over") {
+			t.Errorf("half of shard 1 was combined: %v", err)
+		}
+	}
 	for ; ; stops++ {
 		ctx, cancel := context.WithCancel(t.Context())
 		calls := 0
@@ -81,6 +87,9 @@ func TestACombinationGoesOn(t *testing.T) {
 		}
 		if !errors.Is(err, context.Canceled) {
 			t.Fatal(err)
+		}
+		if stops == 1 {
+			alone()
 		}
 		if err := store.View(t.Context(), func(*db.Snapshot) error { return nil }); !errors.Is(err, db.ErrEmpty) && !errors.Is(err, db.ErrUnpublished) {
 			t.Fatalf("stopped %d times, the store shows something: %v", stops+1, err)

@@ -126,7 +126,8 @@ func scan(files []ingest.Found, opts Options) (out []db.Seen) {
 // where the files have to be read.
 func (p *reprocessing) begin(ctx context.Context, store Store, opts Options) (s state, err error) {
 	err = store.Update(ctx, func(tx *db.Tx) (err error) {
-		if err = claim(ctx, tx, opts.Shard); err != nil {
+		isOther, err := claimForStudy(ctx, tx, opts.Shard)
+		if err != nil {
 			return err
 		}
 		if s.generation, err = regenerate(ctx, tx, opts.Grid, opts.Recipe); err != nil {
@@ -139,7 +140,7 @@ func (p *reprocessing) begin(ctx context.Context, store Store, opts Options) (s 
 			return err
 		}
 		unchanged, err := p.isUnchanged(ctx, tx)
-		if err != nil || unchanged {
+		if err != nil || unchanged && !isOther {
 			return err
 		}
 		p.done.IsRead = true

@@ -5,6 +5,7 @@ import (
 	"crypto/sha256"
 	"encoding/binary"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"path"
 	"time"
@@ -45,19 +46,37 @@ func recordKey(c *ingest.Channel, rel, stem string) string {
 	return path.Join(folderOf(rel), base)
 }
 
-// claim makes the store that of a shard, or refuses it to a run that takes all records.
+// claim makes a store that is new that of a shard, and refuses one that is of another, or of
+// none where there should be one.
 func claim(ctx context.Context, tx *db.Tx, shard db.Shard) error {
-	if shard.Count > 0 {
-		return tx.SetShard(ctx, shard)
-	}
-	held, ok, err := tx.Shard(ctx)
-	switch {
-	case err != nil || !ok:
+	held, _, err := tx.Shard(ctx)
+	if err != nil || held == shard {
 		return err
+	}
+	isUsed, err := tx.IsUsed(ctx)
+	switch {
+	case err != nil:
+		return err
+	case held.Count == 0 && !isUsed:
+		return tx.SetShard(ctx, shard)
+	case held.Count == 0:
+		return fmt.Errorf("the store holds records already, but not as %s: name a new store", shard)
+	case shard.Count > 0:
+		return fmt.Errorf("the store is %s, not %s: each part of an archive needs a store of its own", held, shard)
 	case held.IsCombined():
 		return fmt.Errorf("the store is %s: ingest into these and combine them again, or name another store with --store", held)
 	}
 	return fmt.Errorf("the store is %s: say --shard %d/%d, or name another store with --store", held, held.Number, held.Count)
+}
+
+// claimForStudy does so for a study, whose store may come back from shards that were combined
+// to the files themselves; isOther says that it does, and that they have to be read.
+func claimForStudy(ctx context.Context, tx *db.Tx, shard db.Shard) (isOther bool, err error) {
+	held, ok, err := tx.Shard(ctx)
+	if err == nil && ok && held.IsCombined() && shard.Count == 0 {
+		return true, tx.SetShard(ctx, shard)
+	}
+	return false, errors.Join(err, claim(ctx, tx, shard))
 }
 
 // saidEvents are what documents said of earthquakes, as it is kept for stores to be combined.

@@ -205,6 +205,9 @@ func TestCombineFollowsShards(t *testing.T) {
 	ingestShards(t, dir, 2, ingest)
 	combines(t, exitDone, out, shards...)
 	same("removed.db", shards)
+	shards = ingestShards(t, dir, 3, ingest)
+	combines(t, exitDone, out, shards...)
+	same("split.db", shards)
 	if text := combines(t, exitDone, out, shards...); !strings.Contains(text, "Nothing is new") {
 		t.Errorf("combined again: %s", text)
 	}
@@ -239,7 +242,7 @@ func TestCombineRefuses(t *testing.T) {
 		shards     []string
 	}{
 		{"another split", "shards of one split only", []string{shards[0], threes[1]}},
-		{"another count than the store's", "not what is combined of 3 shards", threes},
+		{"some of another split than the store's", "give all 3 shards", threes[1:]},
 		{"a recipe beside another", "recipe standard", []string{shards[0], raw[1]}},
 		{"one shard of another recipe", "give all 2 shards", raw[1:]},
 		{"a grid beside another", "periods", []string{shards[0], finer[1]}},
