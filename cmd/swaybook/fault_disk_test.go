@@ -174,12 +174,21 @@ func TestDiskIsFull(t *testing.T) {
 	t.Run("store", func(t *testing.T) {
 		s.t = t
 		s.onDisk("store", "size=16m")
-		s.full(saved, before, after, "store", s.store, 0, 16<<10, 64<<10, 128<<10, 256<<10, 512<<10, 768<<10, 1<<20, 1280<<10, 1536<<10, 2<<20, 8<<20)
+		s.full(saved, before, after, reprocessAll, "store", s.store, 0, 16<<10, 64<<10, 128<<10, 256<<10, 512<<10, 768<<10, 1<<20, 1280<<10, 1536<<10, 2<<20, 8<<20)
+	})
+	t.Run("combined store", func(t *testing.T) {
+		s.t = t
+		s.refillAll(saved)
+		fillShards(s)
+		shards := t.TempDir()
+		s.save(shards)
+		s.onDisk("store", "size=32m")
+		s.full(shards, before, after, combineShards, "store", s.store, 0, 16<<10, 64<<10, 128<<10, 256<<10, 512<<10, 768<<10, 1<<20, 1280<<10, 1536<<10, 2<<20, 16<<20)
 	})
 	t.Run("products", func(t *testing.T) {
 		s.t = t
 		s.onDisk("out", "size=1m")
-		s.full(saved, before, after, "out", s.at("out"), 0, 4<<10, 16<<10, 28<<10, 64<<10, 512<<10)
+		s.full(saved, before, after, reprocessAll, "out", s.at("out"), 0, 4<<10, 16<<10, 28<<10, 64<<10, 512<<10)
 	})
 	// A name takes room as well: here the files can be written, but not all be kept beside
 	// what replaces them.
@@ -216,15 +225,15 @@ func (s *faultStudy) refillAll(saved string) {
 	}
 }
 
-// full runs the study with so much room in a folder, and then with enough of it.
-func (s *faultStudy) full(saved string, before, after outcome, folder, place string, room ...uint64) {
+// full runs a command of the study with so much room in a folder, and then with enough of it.
+func (s *faultStudy) full(saved string, before, after outcome, run func(*faultStudy) *exec.Cmd, folder, place string, room ...uint64) {
 	s.t.Helper()
 	failed, done := 0, 0
 	for _, free := range thinned(room...) {
 		s.refillAll(saved)
 		what := fmt.Sprintf("%d bytes free in %s", free, folder)
 		ballast := s.fillUp(folder, free)
-		cmd := s.reprocess()
+		cmd := run(s)
 		text, err := cmd.CombinedOutput()
 		removed := os.Remove(ballast)
 		s.t.Logf("%s: %s", what, lastLine(text))
@@ -237,7 +246,7 @@ func (s *faultStudy) full(saved string, before, after outcome, folder, place str
 		failed++
 		s.failedToWrite(what, string(text), cmd.ProcessState.ExitCode(), place)
 		s.untouched(what, before)
-		mustRun(s.t, s.reprocess())
+		mustRun(s.t, run(s))
 		s.finished("after "+what, after)
 	}
 	if failed == 0 || done == 0 {

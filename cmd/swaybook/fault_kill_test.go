@@ -27,6 +27,16 @@ func toTheEnd(s *faultStudy) { s.t.Helper(); mustRun(s.t, s.reprocess()) }
 
 func reprocessAll(s *faultStudy) *exec.Cmd { return s.reprocess() }
 
+// fillShards has all shards hold what a run would read, and combineShards combines them.
+func fillShards(s *faultStudy) {
+	s.t.Helper()
+	for _, shard := range []string{"1/3", "2/3", "3/3"} {
+		mustRun(s.t, s.reprocess("--shard", shard))
+	}
+}
+
+func combineShards(s *faultStudy) *exec.Cmd { return s.reprocess("--combine", "3") }
+
 // aboutToWrite reports whether files of the products stand beside those that are there.
 func aboutToWrite(s *faultStudy) bool {
 	for _, folder := range faultFolders[1:] {
@@ -48,11 +58,26 @@ var killCases = []killCase{
 	{"ingest first", nil, func(s *faultStudy) { s.be("standard", false) }, (*faultStudy).ingestStandard, nil},
 	{"reprocess by another recipe", func(s *faultStudy) { s.be("standard", false); toTheEnd(s) },
 		func(s *faultStudy) { s.be("as-delivered", false) }, reprocessAll, aboutToWrite},
+	{"combine what changed", func(s *faultStudy) {
+		s.be("standard", false)
+		fillShards(s)
+		mustRun(s.t, combineShards(s))
+		s.be("standard", true)
+		fillShards(s)
+	}, func(*faultStudy) {}, combineShards, aboutToWrite},
 	{"ingest more", func(s *faultStudy) { s.be("standard", false); mustRun(s.t, s.ingestStandard()) },
 		func(s *faultStudy) { s.add("NWT_CDH-UP.AT2") }, (*faultStudy).ingestStandard, nil},
 	{"ingest by another recipe", func(s *faultStudy) { s.be("standard", false); mustRun(s.t, s.ingestStandard()) },
 		func(*faultStudy) {}, func(s *faultStudy) *exec.Cmd { return s.ingest("as-delivered") }, nil},
 	{"reprocess first", nil, func(s *faultStudy) { s.be("standard", false) }, reprocessAll, aboutToWrite},
+	{"combine by another recipe", func(s *faultStudy) {
+		s.be("standard", false)
+		toTheEnd(s)
+		s.be("as-delivered", true)
+		fillShards(s)
+	}, func(*faultStudy) {}, combineShards, aboutToWrite},
+	{"ingest a shard", nil, func(s *faultStudy) { s.be("standard", false) },
+		func(s *faultStudy) *exec.Cmd { return s.ingest("standard", "--shard", "1/2") }, nil},
 	{"reprocess nothing but a lost file", func(s *faultStudy) { s.be("standard", false); toTheEnd(s) },
 		func(s *faultStudy) { s.check(os.Remove(s.at("out/each.csv"))) }, reprocessAll, aboutToWrite},
 }

@@ -136,9 +136,9 @@ func (s *faultStudy) reprocess(args ...string) *exec.Cmd {
 	return exec.Command("swaybook", append([]string{"--quiet", "reprocess", s.file}, args...)...)
 }
 
-func (s *faultStudy) ingest(recipe string) *exec.Cmd {
-	return exec.Command("swaybook", "--quiet", "--store", s.store, "ingest", s.at("records"), "--recipe", recipe,
-		"--catalogue", s.at("records/catalogue.csv"), "--periods", "0.1,0.2,0.3,0.5,0.7,1,1.5,2", "--dampings", "2%,5%")
+func (s *faultStudy) ingest(recipe string, args ...string) *exec.Cmd {
+	return exec.Command("swaybook", append([]string{"--quiet", "--store", s.store, "ingest", s.at("records"), "--recipe", recipe,
+		"--catalogue", s.at("records/catalogue.csv"), "--periods", "0.1,0.2,0.3,0.5,0.7,1,1.5,2", "--dampings", "2%,5%"}, args...)...)
 }
 
 func (s *faultStudy) ingestStandard() *exec.Cmd { return s.ingest("standard") }
