@@ -248,7 +248,7 @@ func ahead[T any](ctx context.Context, read func(context.Context, func(T) error)
 }
 
 func (g *gathering) end(ctx context.Context) error {
-	return g.update(ctx, 0, func(t *Tx) error { return t.EndGathering(ctx, g.part.Number) })
+	return g.update(ctx, 0, func(t *Tx) error { return t.endGathering(ctx, g.part) })
 }
 
 // gone forgets what the shard does not have any more.

@@ -66,9 +66,10 @@ func (t *Tx) ForgetIntake(ctx context.Context, shard int, key IntakeKey) error {
 	return nil
 }
 
-// ClearIntake removes what reading made of all files, so that a run can read them anew.
+// ClearIntake removes what reading made of all files, and what was seen of them, so that a run
+// can read them anew.
 func (t *Tx) ClearIntake(ctx context.Context) error {
-	for _, table := range []string{"intake_series", "intake", "intake_events"} {
+	for _, table := range []string{"intake_series", "intake", "intake_events", "sighting", "gathered"} {
 		if err := t.exec(ctx, `DELETE FROM `+table); err != nil {
 			return fmt.Errorf("clear intake: %w", err)
 		}
@@ -87,9 +88,10 @@ func (t *Tx) PutIntakeEvents(ctx context.Context, shard int, said []byte) error 
 	return nil
 }
 
-// IntakeEvents returns what documents said of earthquakes, shard by shard.
+// IntakeEvents returns what documents said of earthquakes, once what several shards were told
+// alike, as they mostly were.
 func (t *Tx) IntakeEvents(ctx context.Context) ([][]byte, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT said, sha256 FROM intake_events ORDER BY shard`)
+	rows, err := t.tx.QueryContext(ctx, `SELECT said, sha256 FROM intake_events WHERE shard IN (SELECT min(shard) FROM intake_events GROUP BY sha256) ORDER BY shard`)
 	if err != nil {
 		return nil, fmt.Errorf("read events of documents: %w", err)
 	}
@@ -120,19 +122,33 @@ func (s sealedSaying) open() ([]byte, error) {
 	return text, nil
 }
 
+// DamagedIntakeError says that what a store keeps of a shard's file is not what was stored.
+type DamagedIntakeError struct {
+	Shard int
+	Key   IntakeKey
+	err   error
+}
+
+func (e *DamagedIntakeError) Error() string {
+	return fmt.Sprintf("intake of %s, of shard %d: %v", e.Key.Path, e.Shard, e.err)
+}
+
+func (e *DamagedIntakeError) Unwrap() error { return e.err }
+
 // IntakeAfter returns what reading made of files, shard by shard, of so many files behind key,
-// in their order, all of a file together.
+// in their order, all of a file together. The error is a *DamagedIntakeError where one is damaged.
 func (s *Store) IntakeAfter(ctx context.Context, key IntakeKey, files int) ([]Intake, error) {
 	rows, err := s.read.QueryContext(ctx, `WITH next AS (SELECT DISTINCT path, member FROM intake WHERE (path, member) > (?, ?) ORDER BY path, member LIMIT ?)
-		SELECT i.path, i.member, i.said, i.sha256 FROM next n JOIN intake i ON i.path = n.path AND i.member = n.member ORDER BY i.path, i.member, i.shard`, key.Path, key.Member, files)
+		SELECT i.path, i.member, i.shard, i.said, i.sha256 FROM next n JOIN intake i ON i.path = n.path AND i.member = n.member ORDER BY i.path, i.member, i.shard`, key.Path, key.Member, files)
 	if err != nil {
 		return nil, fmt.Errorf("read intake: %w", explain(err))
 	}
 	type row struct {
-		key IntakeKey
+		key   IntakeKey
+		shard int
 		sealedSaying
 	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.key.Path, &v.key.Member, &v.said, &v.sum} })
+	found, err := collect(rows, func(v *row) []any { return []any{&v.key.Path, &v.key.Member, &v.shard, &v.said, &v.sum} })
 	if err != nil {
 		return nil, fmt.Errorf("read intake: %w", explain(err))
 	}
@@ -140,7 +156,7 @@ func (s *Store) IntakeAfter(ctx context.Context, key IntakeKey, files int) ([]In
 	for i, v := range found {
 		out[i].IntakeKey = v.key
 		if out[i].Said, err = v.open(); err != nil {
-			return nil, fmt.Errorf("intake of %s: %w", v.key.Path, err)
+			return nil, &DamagedIntakeError{v.shard, v.key, err}
 		}
 	}
 	return out, nil
@@ -154,40 +170,4 @@ func (s *Store) CountIntake(ctx context.Context, key IntakeKey) (upTo, all int, 
 		return 0, 0, fmt.Errorf("count intake: %w", explain(err))
 	}
 	return upTo, all, nil
-}
-
-// BeginGathering notes that these shards are about to be taken over.
-func (t *Tx) BeginGathering(ctx context.Context, shards []int) error {
-	for _, n := range shards {
-		if err := t.exec(ctx, `INSERT OR IGNORE INTO gathering (shard) VALUES (?)`, n); err != nil {
-			return fmt.Errorf("note what is taken over: %w", err)
-		}
-	}
-	return nil
-}
-
-// EndGathering notes that what the store has of a shard is what the shard has.
-func (t *Tx) EndGathering(ctx context.Context, shard int) error {
-	if err := t.exec(ctx, `DELETE FROM gathering WHERE shard = ?`, shard); err != nil {
-		return fmt.Errorf("note what is taken over: %w", err)
-	}
-	return nil
-}
-
-// Gathering returns the shards whose taking over has begun and not ended.
-func (t *Tx) Gathering(ctx context.Context) ([]int, error) {
-	rows, err := t.tx.QueryContext(ctx, `SELECT shard FROM gathering ORDER BY shard`)
-	if err != nil {
-		return nil, fmt.Errorf("read what is taken over: %w", err)
-	}
-	return collect(rows, func(n *int) []any { return []any{n} })
-}
-
-// GatheredShards returns the numbers of the shards of which the store has something.
-func (s *Store) GatheredShards(ctx context.Context) ([]int, error) {
-	rows, err := s.read.QueryContext(ctx, `SELECT shard FROM intake_events ORDER BY shard`)
-	if err != nil {
-		return nil, fmt.Errorf("read shards: %w", explain(err))
-	}
-	return collect(rows, func(n *int) []any { return []any{n} })
 }

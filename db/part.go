@@ -13,10 +13,11 @@ type Part struct {
 	// Generation is what was computed of it last.
 	Generation Generation
 	// Followed is the study that keeps it, the zero value for none.
-	Followed Followed
-	path     string
-	handle   *sql.DB
-	tx       session
+	Followed  Followed
+	path      string
+	handle    *sql.DB
+	tx        session
+	sightings []byte // digest of what it saw
 }
 
 // OpenPart opens the shard at path for reading, and changes nothing about it. The error is
@@ -64,7 +65,8 @@ func (p *Part) describe(ctx context.Context) (err error) {
 	if last == 0 {
 		return fmt.Errorf("%w: run %s again", ErrUnfinished, p.Shard)
 	}
-	if p.Followed, _, err = t.Followed(ctx); err != nil {
+	p.Followed, _, err = t.Followed(ctx)
+	if err = errors.Join(err, p.noteSightings(ctx)); err != nil {
 		return err
 	}
 	p.Generation, ok, err = t.Current(ctx)

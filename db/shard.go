@@ -65,7 +65,7 @@ func (t *Tx) IsUsed(ctx context.Context) (bool, error) {
 // it be one that has all that it is given. What was kept for combining is forgotten, the
 // working state is left for the run to make anew.
 func (t *Tx) SetShard(ctx context.Context, s Shard) error {
-	err := errors.Join(t.ClearIntake(ctx), t.exec(ctx, `DELETE FROM gathering`), t.exec(ctx, `DELETE FROM shard`))
+	err := errors.Join(t.ClearIntake(ctx), t.exec(ctx, `DELETE FROM shard`))
 	if err == nil && s.Count > 0 {
 		err = t.exec(ctx, `INSERT INTO shard (id, number, count, state) VALUES (1, ?, ?, ?)`, s.Number, s.Count, RebuildChanged)
 	}

@@ -17,7 +17,7 @@ type Combined interface {
 	Gather(ctx context.Context, part *db.Part, generationID int64, tell func(done, total int)) (db.Gathered, error)
 	IntakeAfter(ctx context.Context, key db.IntakeKey, files int) ([]db.Intake, error)
 	CountIntake(ctx context.Context, key db.IntakeKey) (upTo, all int, err error)
-	GatheredShards(ctx context.Context) ([]int, error)
+	GatheredShards(ctx context.Context) ([]db.GatheredShard, error)
 }
 
 // Combination is what became of shards that were combined.
@@ -38,7 +38,11 @@ func Combine(ctx context.Context, store Combined, parts []*db.Part, opts Options
 	opts = withDefaults(opts)
 	c := &combining{store: store, parts: slices.SortedFunc(slices.Values(parts), func(a, b *db.Part) int { return cmp.Compare(a.Number, b.Number) })}
 	c.study = study
-	if err := errors.Join(c.check(), c.checkStudy(opts)); err != nil {
+	err := errors.Join(c.check(), c.checkStudy(opts))
+	if err == nil {
+		err = c.compare(ctx)
+	}
+	if err != nil {
 		return Combination{}, err
 	}
 	run, err := c.begin(ctx, opts)
@@ -59,7 +63,7 @@ func Combine(ctx context.Context, store Combined, parts []*db.Part, opts Options
 	out.Reprocessed = c.done
 	present, errPresent := store.GatheredShards(context.WithoutCancel(ctx))
 	for n := 1; n <= c.count(); n++ {
-		if !slices.Contains(present, n) {
+		if !slices.ContainsFunc(present, func(g db.GatheredShard) bool { return g.Number == n }) {
 			out.Missing = append(out.Missing, n)
 		}
 	}
@@ -98,6 +102,14 @@ func (c *combining) check() error {
 		}
 	}
 	return errors.Join(wrong...)
+}
+
+// compare looks whether the parts saw the same files.
+func (c *combining) compare(ctx context.Context) (err error) {
+	if slices.ContainsFunc(c.parts, func(p *db.Part) bool { return !p.SawAlike(c.parts[0]) }) {
+		c.done.Unseen, err = db.CompareSightings(ctx, c.parts)
+	}
+	return err
 }
 
 // checkStudy looks whether the parts are what the study, if there is one, says today.
@@ -185,20 +197,26 @@ func (c *combining) claim(ctx context.Context, tx *db.Tx) error {
 			return err
 		}
 	}
-	begun, err := tx.Gathering(ctx)
+	gathered, err := tx.Gathered(ctx)
 	if err != nil {
 		return err
 	}
-	var given []int
-	for _, p := range c.parts {
-		given = append(given, p.Number)
-	}
-	for _, n := range begun {
-		if !slices.Contains(given, n) {
-			return fmt.Errorf("shard %d of %d was being taken over when a run before was stopped: give it again", n, c.count())
+	for _, g := range gathered {
+		isGiven := slices.ContainsFunc(c.parts, func(p *db.Part) bool { return p.Number == g.Number })
+		switch {
+		case isGiven:
+		case !g.IsWhole:
+			return fmt.Errorf("shard %d of %d was being taken over when a run before was stopped: give it again", g.Number, c.count())
+		case c.done.Unseen.Files > 0 || !g.SawAlike(c.parts[0]):
+			return fmt.Errorf("shard %d of %d, which was combined before, saw other files than %s, or read them otherwise: give it again, too", g.Number, c.count(), c.parts[0].Path())
 		}
 	}
-	return tx.BeginGathering(ctx, given)
+	for _, p := range c.parts {
+		if err := tx.BeginGathering(ctx, p.Number); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 // checkStore refuses to combine into a store that is another shard, or of what others read:
@@ -277,6 +295,9 @@ func (c *combining) replay(ctx context.Context) error {
 func (c *combining) replayFrom(ctx context.Context, key db.IntakeKey) error {
 	for {
 		found, err := c.store.IntakeAfter(ctx, key, replayFiles)
+		if damaged, ok := errors.AsType[*db.DamagedIntakeError](err); ok {
+			return c.forget(ctx, damaged)
+		}
 		if err != nil || len(found) == 0 {
 			return err
 		}
@@ -289,6 +310,20 @@ func (c *combining) replayFrom(ctx context.Context, key db.IntakeKey) error {
 			return err
 		}
 	}
+}
+
+// forget removes what is damaged, so that the next run takes it over again, and none goes on
+// without.
+func (c *combining) forget(ctx context.Context, damaged *db.DamagedIntakeError) error {
+	err := c.store.Update(ctx, func(tx *db.Tx) error {
+		return errors.Join(
+			tx.ForgetIntake(ctx, damaged.Shard, damaged.Key), tx.BeginGathering(ctx, damaged.Shard),
+			tx.SetRebuild(ctx, db.Rebuild{State: db.RebuildChanged, Reached: db.BeforeIntake}))
+	})
+	if err != nil {
+		return errors.Join(damaged, err)
+	}
+	return fmt.Errorf("%w; it is forgotten: combine shard %d of %d again", damaged, damaged.Shard, c.count())
 }
 
 // byFile are the parts of what was read of each file.
@@ -309,6 +344,9 @@ func replayed(ctx context.Context, parts []db.Intake) (result, error) {
 		res, err := resultOf(part.Said)
 		if err != nil {
 			return whole, fmt.Errorf("%s: %w", part.Path, err)
+		}
+		if i > 0 && res.source.SHA256 != whole.source.SHA256 {
+			return whole, fmt.Errorf("%s: shards have different contents of it: run them again", part.Path)
 		}
 		channels, refused := append(whole.channels, res.channels...), append(whole.refused, res.refused...)
 		if i == 0 || whole.outcome != Stored {

@@ -2,6 +2,7 @@ package pipeline
 
 import (
 	"context"
+	"crypto/sha256"
 	"encoding/json"
 	"errors"
 	"fmt"
@@ -125,9 +126,15 @@ func (e errorText) Error() string { return string(e) }
 
 // keepIntake keeps what stores are combined by, in a shard.
 func (w *writer) keepIntake(ctx context.Context, tx *db.Tx, res result) error {
-	switch shard := w.opts.Shard; {
-	case shard.Count == 0:
+	shard := w.opts.Shard
+	if shard.Count == 0 {
 		return nil
+	}
+	sum := sha256.Sum256([]byte(res.source.SHA256 + "\n" + w.opts.Decided + "\n" + w.opts.Program))
+	if err := tx.PutSighting(ctx, res.key, sum[:16]); err != nil {
+		return err
+	}
+	switch {
 	case res.intake == nil:
 		return tx.ForgetIntake(ctx, shard.Number, res.key)
 	default:

@@ -40,6 +40,8 @@ type result struct {
 	err      error  // why it was rejected
 	channels []solved
 	refused  ingest.ChannelErrors // why other channels of a file that is read were not
+	// unsolved are those of refused that were read, and are of the run's share.
+	unsolved ingest.ChannelErrors
 	// elsewhere counts the channels that are left to other shards.
 	elsewhere int
 	key       db.IntakeKey // its place among what is read
@@ -123,7 +125,7 @@ func (r *reader) make(ctx context.Context, file item, res result) (result, error
 // said of a file as a whole is said by one.
 func (r *reader) keep(res result) (result, error) {
 	if !r.share.takes(res.rel) {
-		res.refused = nil
+		res.refused = res.unsolved
 		if res.outcome != Stored {
 			res.outcome, res.err = Elsewhere, nil
 		}
@@ -187,12 +189,13 @@ func (r *reader) parse(ctx context.Context, file ingest.Found, data []byte, res 
 			res.elsewhere++
 			continue
 		}
-		if err := r.solve(&s, channels[i], isLater); err != nil {
-			res.refused = append(res.refused, &ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
+		if err := survive(func() error { return r.solve(&s, channels[i], isLater) }); err != nil {
+			res.unsolved = append(res.unsolved, &ingest.ParseError{Path: file.Path, Line: channels[i].Line, Err: err})
 			continue
 		}
 		res.channels = append(res.channels, s)
 	}
+	res.refused = append(res.refused, res.unsolved...)
 	return res
 }
 

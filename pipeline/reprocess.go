@@ -36,6 +36,9 @@ type Reprocessed struct {
 	// Published what is since; 0 where there is none.
 	Edition, Before, Published int64
 	IsHeld                     bool // the newest edition was not approved
+	// Unseen are the files that some of the shards that were combined saw, and others did not:
+	// what they hold may lack.
+	Unseen db.Unseen
 }
 
 // Reprocess makes the store that of the study's files as they are now. Where a file is new,

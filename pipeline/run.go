@@ -46,7 +46,10 @@ type Options struct {
 	Takes func(rel string, isArchive bool) bool
 	// Shard is the part of the records that the run takes, in a store that is for that; the
 	// zero value takes all.
-	Shard   db.Shard
+	Shard db.Shard
+	// Decided is a digest of all that decides, beside the files and the program, how these are
+	// read: the catalogue, the hints. It is compared where shards are combined.
+	Decided string
 	Workers int       // files in work at the same time; default GOMAXPROCS
 	Program string    // name and version, kept with the run
 	Started time.Time // when the run began

@@ -82,6 +82,7 @@ type combineReport struct {
 	Shards    []combinedShard `json:"shards"`
 	Count     int             `json:"shard_count"`
 	Missing   []int           `json:"missing_shards"`
+	Unseen    *unseenReport   `json:"unseen"`
 	Taken     gatheredReport  `json:"taken_over"`
 	IsRebuilt bool            `json:"is_rebuilt"`
 	Edition   int64           `json:"edition"`
@@ -90,6 +91,26 @@ type combineReport struct {
 type combinedShard struct {
 	Number int    `json:"shard"`
 	Path   string `json:"path"`
+}
+
+// unseenReport tells of files that some shards saw, and others did not.
+type unseenReport struct {
+	Files int    `json:"files"`
+	First string `json:"first"`
+}
+
+// newUnseenReport is nil where all saw the same files.
+func newUnseenReport(u db.Unseen) *unseenReport {
+	if u.Files == 0 {
+		return nil
+	}
+	return &unseenReport{u.Files, u.First}
+}
+
+func (u *unseenReport) print(p *printer) {
+	if u != nil {
+		p.printf("Files that some shards saw and others did not, whose records may lack: %d, the first %s; fill all shards again\n", u.Files, u.First)
+	}
 }
 
 type gatheredReport struct {
@@ -162,7 +183,7 @@ func closeParts(parts []*db.Part) error {
 
 func newCombineReport(o combineOptions, parts []*db.Part, done pipeline.Combination) combineReport {
 	r := combineReport{
-		ingestReport: newIngestReport(o.ingest, done.Summary, true), Shards: []combinedShard{}, Count: parts[0].Count, Missing: append([]int{}, done.Missing...),
+		ingestReport: newIngestReport(o.ingest, done.Summary, true), Shards: []combinedShard{}, Count: parts[0].Count, Missing: append([]int{}, done.Missing...), Unseen: newUnseenReport(done.Unseen),
 		Taken:     gatheredReport{done.Gathered.Files, done.Gathered.Gone, done.Gathered.Computations, done.Gathered.Damaged},
 		IsRebuilt: done.IsRead, Edition: done.Published,
 	}
@@ -189,6 +210,7 @@ func (r combineReport) print(w io.Writer, asJSON bool) error {
 	if len(r.Missing) > 0 {
 		p.printf("Shards that are missing: %s\n", numbers(r.Missing))
 	}
+	r.Unseen.print(p)
 	if !r.IsRebuilt {
 		p.printf("Nothing is new: edition %d is that of the shards.\n", r.Edition)
 		return p.err

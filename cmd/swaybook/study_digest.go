@@ -11,6 +11,8 @@ import (
 	"slices"
 	"strings"
 
+	"github.com/urfave/cli/v2"
+
 	"swaybook/pipeline/study"
 )
 
@@ -46,7 +48,10 @@ func (d *digester) settings(settings []study.Setting) {
 }
 
 // file adds what is in a file, or in the files of a folder.
-func (d *digester) file(path string) {
+func (d *digester) file(path string) { d.contents(path, func(name string) string { return name }) }
+
+// contents does so under other names.
+func (d *digester) contents(path string, called func(name string) string) {
 	names := []string{path}
 	if entries, err := os.ReadDir(path); err == nil {
 		names = nil
@@ -61,7 +66,7 @@ func (d *digester) file(path string) {
 		if err != nil && d.err == nil {
 			d.err = err
 		}
-		d.add(name, sum)
+		d.add(called(name), sum)
 	}
 }
 
@@ -98,6 +103,24 @@ func decidedBy(s *study.Study) string {
 	d.settings(slices.DeleteFunc(slices.Clone(s.Ingest), func(s study.Setting) bool {
 		return s.Key == "recipe" || s.Key == "periods" || s.Key == "dampings"
 	}))
+	return d.sum()
+}
+
+// decidedByFlags is the same of an ingest without a study, but for the program. Where the
+// files lie that its flags name does not matter: shards may be filled by several machines.
+func decidedByFlags(c *cli.Context) string {
+	d := &digester{}
+	d.add(c.String("unit"), c.Float64("dt"))
+	for _, flag := range []string{"metadata", "layout", "catalogue"} {
+		paths := c.StringSlice(flag)
+		if flag == "catalogue" && c.IsSet(flag) {
+			paths = []string{c.String(flag)}
+		}
+		for _, path := range paths {
+			d.add(flag)
+			d.contents(path, filepath.Base)
+		}
+	}
 	return d.sum()
 }
 

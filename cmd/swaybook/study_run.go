@@ -97,6 +97,7 @@ func (r *studyRun) run(ctx context.Context) (err error) {
 func (r *studyRun) note(done pipeline.Reprocessed, isWhole bool) {
 	s := &r.state
 	s.Run, s.Edition, s.Published, s.Before = numbered(done.Run), numbered(done.Edition), numbered(done.Published), numbered(done.Before)
+	s.Unseen = newUnseenReport(done.Unseen)
 	if s.IsRead = done.IsRead; done.IsRead {
 		report := newIngestReport(r.plan.ingest, done.Summary, isWhole)
 		s.Ingest = &report

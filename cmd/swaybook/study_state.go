@@ -38,12 +38,14 @@ type studyState struct {
 	IsRead    bool   `json:"is_read"` // files were read, since something had changed
 	// Rejected counts what is rejected of the files as they are, by path; null where nobody
 	// came to look.
-	Rejected *int           `json:"rejected_files"`
-	Ingest   *ingestReport  `json:"ingest"`
-	Changes  *changeReport  `json:"changes"`
-	Drift    *driftReport   `json:"drift"`
-	Outputs  []outputReport `json:"outputs"`
-	Pruned   *pruneReport   `json:"pruned"`
+	Rejected *int          `json:"rejected_files"`
+	Ingest   *ingestReport `json:"ingest"`
+	// Unseen are files that not all shards saw; null where all did, or none were combined.
+	Unseen  *unseenReport  `json:"unseen"`
+	Changes *changeReport  `json:"changes"`
+	Drift   *driftReport   `json:"drift"`
+	Outputs []outputReport `json:"outputs"`
+	Pruned  *pruneReport   `json:"pruned"`
 }
 
 // The outcomes of a study's run.
@@ -162,6 +164,7 @@ func (r *studyRun) print(p *printer) {
 	} else if s.Run != nil {
 		p.printf("No file has changed since the last run.\n")
 	}
+	s.Unseen.print(p)
 	if s.Changes != nil {
 		p.printf("Changed since edition %d, which was published:\n", *s.Before)
 		s.Changes.print(p, shownCodes)
