@@ -156,45 +156,6 @@ func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[
 	return out, nil
 }
 
-// Span is the positions From … To-1 of the grid's periods.
-type Span struct{ From, To int }
-
-// Spectra reads the SD spectra of a role at the grid's damping of this position,
-// at the periods of the span only, and calls f with each in the order of the
-// record's id. Each has one value a period, unless it is damaged: none where it is not what
-// its checksum, which is of all periods, was taken of. f must not keep it.
-func (s *Snapshot) Spectra(ctx context.Context, role string, dampingPosition int, periods Span, f func(recordID int64, sd Ordinates) error) error {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, s.crc32c, s.sd_m FROM `+s.shown("computed")+` k LEFT JOIN spectrum s ON s.id = `+firstSpectrum+` + ?1
-		WHERE k.role = ?2 ORDER BY k.record_id`, dampingPosition, role)
-	if err != nil {
-		return fmt.Errorf("read spectra: %w", err)
-	}
-	defer rows.Close()
-	var id, computation int64
-	var of string
-	var seal sql.NullInt64
-	var raw sql.RawBytes
-	into := []any{&id, &of, &computation, &seal, &raw}
-	seen := s.tally("computed", role, "record_id", "role", "computation_id", "", "")
-	for rows.Next() {
-		if err := rows.Scan(into...); err != nil {
-			return s.unread("computed", err)
-		}
-		seen.add(into)
-		if !seal.Valid {
-			continue
-		}
-		sd := sealedSpectrum{raw, seal.Int64}.open()
-		if len(sd) >= periods.To*OrdinateWidth {
-			sd = sd[periods.From*OrdinateWidth : periods.To*OrdinateWidth]
-		}
-		if err := f(id, Ordinates(sd)); err != nil {
-			return err
-		}
-	}
-	return s.unread("computed", errors.Join(rows.Err(), seen.check()))
-}
-
 // Motion returns a component's motion, its samples checked against their digest. The
 // error wraps ErrDamaged where these cannot be had.
 func (s *Snapshot) Motion(ctx context.Context, componentID int64) (Motion, error) {
