@@ -47,7 +47,7 @@ func (r *RecordRow) eventWords() string {
 			magnitude = "magnitude " + magnitude
 		}
 	}
-	return phrase(spaced(orEmpty(r.Event), orEmpty(r.EventName)), orEmpty(r.Origin), magnitude,
+	return phrase(spaced(orEmpty(r.Event), orEmpty(r.EventName)), timeText(r.Origin), magnitude,
 		withNumber("depth ", r.DepthKM, " km"), place(r.EventLatitude, r.EventLongitude))
 }
 

@@ -18,75 +18,75 @@ type RecordsQuestion struct {
 // RecordRow describes one held component, or a pair over all directions. Nil
 // fields are unknown.
 type RecordRow struct {
-	Record            string   `json:"record"`
-	Event             *string  `json:"event"`
-	EventName         *string  `json:"event_name"`
-	Origin            *string  `json:"origin"` // UTC, RFC 3339
-	Magnitude         *float64 `json:"magnitude"`
-	MagnitudeType     *string  `json:"magnitude_type"`
-	DepthKM           *float64 `json:"depth_km"`
-	EventLatitude     *float64 `json:"event_latitude"`
-	EventLongitude    *float64 `json:"event_longitude"`
-	Network           *string  `json:"network"`
-	Station           *string  `json:"station"`
-	StationName       *string  `json:"station_name"`
-	StationLatitude   *float64 `json:"station_latitude"`
-	StationLongitude  *float64 `json:"station_longitude"`
-	Vs30MPS           *float64 `json:"vs30_m_s"`
-	SiteClassEN1998   *string  `json:"site_class_en1998"`
-	SiteClassNEHRP    *string  `json:"site_class_nehrp"`
-	DistanceKM        *float64 `json:"distance_km"` // the best of the following, see db.Distances
-	EpicentralKM      *float64 `json:"epicentral_km"`
-	HypocentralKM     *float64 `json:"hypocentral_km"`
-	RuptureKM         *float64 `json:"rupture_km"`
-	JoynerBooreKM     *float64 `json:"jb_km"`
-	Instrument        *string  `json:"instrument"`
-	Siting            string   `json:"siting"`
-	Component         string   `json:"component"`
-	Channel           *string  `json:"channel"`
-	Axis              string   `json:"axis"` // "horizontal", "vertical" or "unknown"
-	AzimuthDeg        *float64 `json:"azimuth_deg"`
-	Start             *string  `json:"start"` // UTC, RFC 3339
-	StepS             float64  `json:"dt_s"`
-	Samples           int      `json:"samples"`
-	DurationS         float64  `json:"duration_s"` // first sample to last
-	PGA               float64  `json:"pga_g"`
-	PGV               float64  `json:"pgv_m_s"`
-	PGD               float64  `json:"pgd_m"`
-	Arias             *float64 `json:"arias_m_s"`
-	CAV               *float64 `json:"cav_m_s"`
-	StandardisedCAV   *float64 `json:"cav_standardised_m_s"`
-	Significant575    *float64 `json:"d5_75_s"`
-	Significant595    *float64 `json:"d5_95_s"`
-	Bracketed         *float64 `json:"bracketed_s"`
-	RMS               *float64 `json:"rms_m_s2"`
-	MeanPeriod        *float64 `json:"mean_period_s"`
-	SpectrumIntensity *float64 `json:"spectrum_intensity_m"`
-	Unit              *string  `json:"unit"` // of the file's numbers
-	Processing        *string  `json:"processing"`
-	LowCutHz          *float64 `json:"low_cut_hz"`
-	HighCutHz         *float64 `json:"high_cut_hz"`
-	UsableFromS       *float64 `json:"usable_from_s"`
-	UsableToS         *float64 `json:"usable_to_s"` // null: no filter is known to end it
-	Format            string   `json:"format"`
-	Source            string   `json:"source"`
-	Line              *int     `json:"line"`
-	SHA256            string   `json:"sha256"`
-	Warnings          []string `json:"warnings"`
+	Record            string     `json:"record" parquet:"record"`
+	Event             *string    `json:"event" parquet:"event,dict"`
+	EventName         *string    `json:"event_name" parquet:"event_name"`
+	Origin            *time.Time `json:"origin" parquet:"origin,timestamp(microsecond)"` // UTC
+	Magnitude         *float64   `json:"magnitude" parquet:"magnitude"`
+	MagnitudeType     *string    `json:"magnitude_type" parquet:"magnitude_type,dict"`
+	DepthKM           *float64   `json:"depth_km" parquet:"depth_km" unit:"km"`
+	EventLatitude     *float64   `json:"event_latitude" parquet:"event_latitude" unit:"deg"`
+	EventLongitude    *float64   `json:"event_longitude" parquet:"event_longitude" unit:"deg"`
+	Network           *string    `json:"network" parquet:"network,dict"`
+	Station           *string    `json:"station" parquet:"station,dict"`
+	StationName       *string    `json:"station_name" parquet:"station_name"`
+	StationLatitude   *float64   `json:"station_latitude" parquet:"station_latitude" unit:"deg"`
+	StationLongitude  *float64   `json:"station_longitude" parquet:"station_longitude" unit:"deg"`
+	Vs30MPS           *float64   `json:"vs30_m_s" parquet:"vs30_m_s" unit:"m/s"`
+	SiteClassEN1998   *string    `json:"site_class_en1998" parquet:"site_class_en1998,dict"`
+	SiteClassNEHRP    *string    `json:"site_class_nehrp" parquet:"site_class_nehrp,dict"`
+	DistanceKM        *float64   `json:"distance_km" parquet:"distance_km" unit:"km"` // the best of the following, see db.Distances
+	EpicentralKM      *float64   `json:"epicentral_km" parquet:"epicentral_km" unit:"km"`
+	HypocentralKM     *float64   `json:"hypocentral_km" parquet:"hypocentral_km" unit:"km"`
+	RuptureKM         *float64   `json:"rupture_km" parquet:"rupture_km" unit:"km"`
+	JoynerBooreKM     *float64   `json:"jb_km" parquet:"jb_km" unit:"km"`
+	Instrument        *string    `json:"instrument" parquet:"instrument"`
+	Siting            string     `json:"siting" parquet:"siting,dict"`
+	Component         string     `json:"component" parquet:"component,dict"`
+	Channel           *string    `json:"channel" parquet:"channel"`
+	Axis              string     `json:"axis" parquet:"axis,dict"` // "horizontal", "vertical" or "unknown"
+	AzimuthDeg        *float64   `json:"azimuth_deg" parquet:"azimuth_deg" unit:"deg"`
+	Start             *time.Time `json:"start" parquet:"start,timestamp(microsecond)"` // UTC
+	StepS             float64    `json:"dt_s" parquet:"dt_s" unit:"s"`
+	Samples           int        `json:"samples" parquet:"samples"`
+	DurationS         float64    `json:"duration_s" parquet:"duration_s" unit:"s"` // first sample to last
+	PGA               float64    `json:"pga_g" parquet:"pga_g" unit:"g"`
+	PGV               float64    `json:"pgv_m_s" parquet:"pgv_m_s" unit:"m/s"`
+	PGD               float64    `json:"pgd_m" parquet:"pgd_m" unit:"m"`
+	Arias             *float64   `json:"arias_m_s" parquet:"arias_m_s" unit:"m/s"`
+	CAV               *float64   `json:"cav_m_s" parquet:"cav_m_s" unit:"m/s"`
+	StandardisedCAV   *float64   `json:"cav_standardised_m_s" parquet:"cav_standardised_m_s" unit:"m/s"`
+	Significant575    *float64   `json:"d5_75_s" parquet:"d5_75_s" unit:"s"`
+	Significant595    *float64   `json:"d5_95_s" parquet:"d5_95_s" unit:"s"`
+	Bracketed         *float64   `json:"bracketed_s" parquet:"bracketed_s" unit:"s"`
+	RMS               *float64   `json:"rms_m_s2" parquet:"rms_m_s2" unit:"m/s²"`
+	MeanPeriod        *float64   `json:"mean_period_s" parquet:"mean_period_s" unit:"s"`
+	SpectrumIntensity *float64   `json:"spectrum_intensity_m" parquet:"spectrum_intensity_m" unit:"m"`
+	Unit              *string    `json:"unit" parquet:"unit,dict"` // of the file's numbers
+	Processing        *string    `json:"processing" parquet:"processing,dict"`
+	LowCutHz          *float64   `json:"low_cut_hz" parquet:"low_cut_hz" unit:"Hz"`
+	HighCutHz         *float64   `json:"high_cut_hz" parquet:"high_cut_hz" unit:"Hz"`
+	UsableFromS       *float64   `json:"usable_from_s" parquet:"usable_from_s" unit:"s"`
+	UsableToS         *float64   `json:"usable_to_s" parquet:"usable_to_s" unit:"s"` // null: no filter is known to end it
+	Format            string     `json:"format" parquet:"format,dict"`
+	Source            string     `json:"source" parquet:"source"`
+	Line              *int       `json:"line" parquet:"line"`
+	SHA256            string     `json:"sha256" parquet:"sha256"`
+	Warnings          []string   `json:"warnings" parquet:"warnings,list"`
 	// Quality is what was found of the component as it was delivered, and behind the recipe.
-	Quality []FindingRow `json:"quality"`
+	Quality []FindingRow `json:"quality" parquet:"quality,list"`
 	// DuplicateOf is the record from which statistics take the motion instead.
-	DuplicateOf *string `json:"duplicate_of"`
+	DuplicateOf *string `json:"duplicate_of" parquet:"duplicate_of"`
 }
 
 // FindingRow is one thing that is wrong with a component: the value measured and the bound
 // that it is beyond, of a share without unit, else in s.
 type FindingRow struct {
-	Flag  string  `json:"flag"`
-	Of    string  `json:"of"` // "delivered" or "conditioned"
-	Value float64 `json:"value"`
-	Bound float64 `json:"bound"`
-	Words string  `json:"words"`
+	Flag  string  `json:"flag" parquet:"flag,dict"`
+	Of    string  `json:"of" parquet:"of,dict"` // "delivered" or "conditioned"
+	Value float64 `json:"value" parquet:"value"`
+	Bound float64 `json:"bound" parquet:"bound"`
+	Words string  `json:"words" parquet:"words"`
 }
 
 // RecordsAnswer lists components in the order of record code and role.
@@ -284,12 +284,20 @@ func orNull(s string) *string {
 	return &s
 }
 
-func timeOrNull(at time.Time) *string {
+func timeOrNull(at time.Time) *time.Time {
 	if at.IsZero() {
 		return nil
 	}
-	s := at.UTC().Format(time.RFC3339Nano)
-	return &s
+	at = at.UTC()
+	return &at
+}
+
+// timeText is in RFC 3339, as in JSON, "" of an unknown one.
+func timeText(at *time.Time) string {
+	if at == nil {
+		return ""
+	}
+	return at.Format(time.RFC3339Nano)
 }
 
 func lineOrNull(n int) *int {

@@ -78,7 +78,7 @@ func (a *RecordAnswer) deliveredTable() *table {
 	}}
 	for i := range a.Rows {
 		r := &a.Rows[i]
-		t.add(r.Component, orDash(r.Channel), shortOrDash(r.AzimuthDeg), orDash(r.Start), shortest(r.StepS), strconv.Itoa(r.Samples), figure(r.DurationS),
+		t.add(r.Component, orDash(r.Channel), shortOrDash(r.AzimuthDeg), orDash(orNull(timeText(r.Start))), shortest(r.StepS), strconv.Itoa(r.Samples), figure(r.DurationS),
 			orDash(r.Unit), orDash(r.Processing), figure(orNaN(r.LowCutHz)), figure(orNaN(r.HighCutHz)), figure(orNaN(r.UsableFromS)), figure(orNaN(r.UsableToS)))
 	}
 	return t

@@ -108,7 +108,7 @@ func (a *RecordsAnswer) csv() []byte {
 // csv writes the cells in the order of recordsHeader; an unknown is an empty
 // cell, warnings are joined with "; ".
 func (r *RecordRow) csv(l *csvLine) {
-	l.words(r.Record, orEmpty(r.Event), orEmpty(r.EventName), orEmpty(r.Origin))
+	l.words(r.Record, orEmpty(r.Event), orEmpty(r.EventName), timeText(r.Origin))
 	l.number(orNaN(r.Magnitude))
 	l.word(orEmpty(r.MagnitudeType))
 	l.number(orNaN(r.DepthKM))
@@ -124,7 +124,7 @@ func (r *RecordRow) csv(l *csvLine) {
 	}
 	l.words(orEmpty(r.Instrument), r.Siting, r.Component, orEmpty(r.Channel), r.Axis)
 	l.number(orNaN(r.AzimuthDeg))
-	l.word(orEmpty(r.Start))
+	l.word(timeText(r.Start))
 	l.number(r.StepS)
 	l.integer(r.Samples)
 	for _, x := range []float64{r.DurationS, r.PGA, r.PGV, r.PGD} {
