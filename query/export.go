@@ -43,15 +43,8 @@ const exportGroup = 16
 // about 1 kB, is held. Nothing is written before the question is found right
 // and the selection not empty; see SpectrumQuestion.Ask for the errors.
 func (q ExportQuestion) Write(ctx context.Context, store *db.Store, w io.Writer) (*ExportSummary, error) {
-	selection, err := q.ofEverything().withDefaults(ComponentAll, SitingAll, storedComponents)
+	q, err := q.withDefaults()
 	if err != nil {
-		return nil, err
-	}
-	q.Selection = selection
-	if err := checkOscillators(nil, q.Dampings); err != nil {
-		return nil, err
-	}
-	if err := q.Band.validate(); err != nil {
 		return nil, err
 	}
 	var summary *ExportSummary
@@ -60,6 +53,17 @@ func (q ExportQuestion) Write(ctx context.Context, store *db.Store, w io.Writer)
 		return err
 	})
 	return summary, err
+}
+
+func (q ExportQuestion) withDefaults() (ExportQuestion, error) {
+	var err error
+	if q.Selection, err = q.ofEverything().withDefaults(ComponentAll, SitingAll, storedComponents); err != nil {
+		return q, err
+	}
+	if err := checkOscillators(nil, q.Dampings); err != nil {
+		return q, err
+	}
+	return q, q.Band.validate()
 }
 
 func (q ExportQuestion) write(ctx context.Context, snapshot *db.Snapshot, w io.Writer) (*ExportSummary, error) {

@@ -53,8 +53,13 @@ func (q MeasuresQuestion) Write(ctx context.Context, store *db.Store, w io.Write
 func (m *motion) measures(l *csvLine) {
 	a := m.attributes()
 	l.words(m.record(), m.role)
-	for _, x := range slices.Concat([]*float64{&a.PGA, &a.PGV, &a.PGD}, intensitiesOf(&a)) {
+	for _, x := range measuresOf(&a) {
 		l.number(*x)
 	}
 	l.end()
+}
+
+// measuresOf are the measures in the order of measuresHeader.
+func measuresOf(a *attributes) []*float64 {
+	return slices.Concat([]*float64{&a.PGA, &a.PGV, &a.PGD}, intensitiesOf(a))
 }

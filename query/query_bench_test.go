@@ -6,6 +6,7 @@ import (
 	"io"
 	"math"
 	"math/rand/v2"
+	"os"
 	"testing"
 
 	"swaybook/db"
@@ -163,6 +164,26 @@ func BenchmarkExport(b *testing.B) {
 			b.Fatal(err)
 		}
 		rows = summary.Rows
+	}
+	b.ReportMetric(float64(rows)*float64(b.N)/b.Elapsed().Seconds(), "rows/s")
+}
+
+// BenchmarkDataset writes the same as Parquet.
+func BenchmarkDataset(b *testing.B) {
+	store := benchStore(b, 1000, 50)
+	rows, dir := 0, b.TempDir()
+	for b.Loop() {
+		folder, err := os.MkdirTemp(dir, "")
+		if err != nil {
+			b.Fatal(err)
+		}
+		summary, err := DatasetQuestion{}.Write(b.Context(), store, folder)
+		if err != nil {
+			b.Fatal(err)
+		}
+		if rows = summary.Ordinates; os.RemoveAll(folder) != nil {
+			b.Fatal("folder stays")
+		}
 	}
 	b.ReportMetric(float64(rows)*float64(b.N)/b.Elapsed().Seconds(), "rows/s")
 }

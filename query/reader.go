@@ -17,6 +17,7 @@ import (
 
 // reader fills in stored periods of ordinates from stored spectra.
 type reader struct {
+	walks   *walks // nil: of all of the store at once
 	o       *ordinates
 	motions []motion
 	unfit   *unfit  // those whose spectrum is damaged
@@ -134,12 +135,13 @@ func (r *reader) fetch(ctx context.Context, snapshot *db.Snapshot, position int,
 		}
 	}
 	next := 0
+	spectra := r.spectra(snapshot, role, position, wanted)
 	skipTo := func(id int64) {
 		for ; next < len(wanted) && wanted[next].recordID < id; next++ {
 			lacking = append(lacking, wanted[next].motion)
 		}
 	}
-	err = snapshot.Spectra(ctx, role, position, r.span, func(id int64, sd db.Ordinates) error {
+	err = spectra(ctx, func(id int64, sd db.Ordinates) error {
 		skipTo(id)
 		if next == len(wanted) || wanted[next].recordID != id {
 			return nil
