@@ -130,13 +130,19 @@ func (m *measurements) command(name string, args ...string) {
 	one.peakKB = max(one.peakKB, cmd.ProcessState.SysUsage().(*syscall.Rusage).Maxrss)
 }
 
-func (m *measurements) print(store string) {
+// lines prints a line a command.
+func (m *measurements) lines() {
 	m.t.Helper()
-	m.t.Logf("%d components of %d samples, %d shards", *scaleTo, scaleSamples, *scaleShards)
 	for _, name := range m.names {
 		one := m.took[name]
 		m.t.Logf("%-16s %9.2f s  processor %9.2f s  peak %6.1f MB", name, one.wall.Seconds(), one.cpu.Seconds(), float64(one.peakKB)/1024)
 	}
+}
+
+func (m *measurements) print(store string) {
+	m.t.Helper()
+	m.t.Logf("%d components of %d samples, %d shards", *scaleTo, scaleSamples, *scaleShards)
+	m.lines()
 	info, err := os.Stat(store)
 	if err != nil {
 		m.t.Fatal(err)
