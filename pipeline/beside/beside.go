@@ -245,9 +245,6 @@ func (s *Set) sync() {
 			continue
 		}
 		seen[dir] = true
-		if d, err := os.Open(dir); err == nil {
-			d.Sync() // not every system can
-			d.Close()
-		}
+		settleNames(dir)
 	}
 }

@@ -55,6 +55,11 @@ func replaceFolder(hidden, name string, mayReplace, fill func(string) error) (er
 	if err := checkReplace(name, mayReplace); err != nil { // it may have come meanwhile
 		return err
 	}
+	if info, err := os.Stat(name); err == nil {
+		if err := os.Chmod(part, info.Mode().Perm()); err != nil {
+			return err
+		}
+	}
 	return exchange(part, name, before)
 }
 
@@ -89,11 +94,15 @@ func checkReplace(name string, mayReplace func(string) error) error {
 	return mayReplace(name)
 }
 
-// settle waits until all files in the folder are on the disk.
+// settle waits until all that is in the folder is on the disk.
 func settle(folder string) error {
 	return filepath.WalkDir(folder, func(path string, e fs.DirEntry, err error) error {
-		if err != nil || e.IsDir() {
+		if err != nil {
 			return err
+		}
+		if e.IsDir() {
+			settleNames(path)
+			return nil
 		}
 		f, err := os.OpenFile(path, os.O_RDWR, 0)
 		if err != nil {
@@ -101,6 +110,14 @@ func settle(folder string) error {
 		}
 		return errors.Join(f.Sync(), f.Close())
 	})
+}
+
+// settleNames waits until the names in the folder are on the disk, where the system can.
+func settleNames(folder string) {
+	if d, err := os.Open(folder); err == nil {
+		d.Sync()
+		d.Close()
+	}
 }
 
 // exchange has the folder take the name. Where it cannot, all is as before.
@@ -116,10 +133,7 @@ func exchange(part, name, before string) error {
 		}
 		return err
 	}
-	if d, err := os.Open(filepath.Dir(name)); err == nil {
-		d.Sync() // not every system can
-		d.Close()
-	}
+	settleNames(filepath.Dir(name))
 	if isThere {
 		return os.RemoveAll(before)
 	}

@@ -106,6 +106,9 @@ func TestFoldersBehindLinks(t *testing.T) {
 	real, link := filepath.Join(dir, "real"), filepath.Join(dir, "link")
 	must(t, os.Mkdir(real, 0o750), os.Symlink("real", link), WriteFolder(link, nil, fillWith("x")))
 	wantFile(t, "through a link", real, "x")
+	if info, err := os.Stat(real); err != nil || info.Mode().Perm() != 0o750 {
+		t.Errorf("the folder has another mode: %v, %v", info.Mode(), err)
+	}
 	if info, err := os.Lstat(link); err != nil || info.Mode()&fs.ModeSymlink == 0 {
 		t.Errorf("the link is gone: %v", err)
 	}
