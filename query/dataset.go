@@ -135,7 +135,7 @@ func (d *dataset) head(table string, more ...parquet.Property) parquet.Head {
 		{Key: "g", Value: shortest(StandardGravity) + " m/s²"},
 		{Key: "caution", Value: Caution},
 	}
-	return parquet.Head{Program: d.question.Program, Version: d.question.Version, Properties: append(properties, more...)}
+	return parquet.Head{Program: d.question.Program, Version: d.question.Version, Table: table, Properties: append(properties, more...)}
 }
 
 // writeTable writes the only file of a table, of rows that are made of the items in turn.

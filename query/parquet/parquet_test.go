@@ -56,7 +56,7 @@ func write(t *testing.T, head Head, groups ...[]row) []byte {
 	return b.Bytes()
 }
 
-var head = Head{Program: "program", Version: "1.2.3", SortedBy: []string{"x_s", "name"}, Properties: []Property{{"caution", "care"}, {"run", "7"}}}
+var head = Head{Program: "program", Version: "1.2.3", Table: "things", SortedBy: []string{"x_s", "name"}, Properties: []Property{{"caution", "care"}, {"run", "7"}}}
 
 func TestRowsComeBack(t *testing.T) {
 	text := write(t, head, rows[:2], rows[2:])
@@ -93,6 +93,9 @@ func TestFilesSayWhatTheyHold(t *testing.T) {
 	}
 	if by := f.Metadata().CreatedBy; !strings.HasPrefix(by, "program version 1.2.3") {
 		t.Errorf("created by %q", by)
+	}
+	if name := f.Metadata().Schema[0].Name; name != "things" {
+		t.Errorf("the schema is called %q", name)
 	}
 	groups := f.Metadata().RowGroups
 	if len(groups) != 2 || groups[0].NumRows != 2 {

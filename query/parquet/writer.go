@@ -15,6 +15,7 @@ type Property struct{ Key, Value string }
 // Head is what a file says of all of its rows.
 type Head struct {
 	Program, Version string // that wrote it
+	Table            string // of which it has rows, the name of its schema
 	SortedBy         []string
 	Properties       []Property // each key once
 }
@@ -40,7 +41,7 @@ type Writer[T any] struct{ rows *pq.GenericWriter[T] }
 
 // NewWriter begins a file of the columns that the fields of T are.
 func NewWriter[T any](w io.Writer, head Head) *Writer[T] {
-	schema, units := pq.SchemaOf(*new(T)), unitsOf(reflect.TypeFor[T](), "")
+	schema, units := pq.NewSchema(head.Table, pq.SchemaOf(*new(T))), unitsOf(reflect.TypeFor[T](), "")
 	options := []pq.WriterOption{
 		schema,
 		pq.CreatedBy(head.Program, head.Version, "release"),
