@@ -171,7 +171,11 @@ func (d *dataset) writeFile(name string, fill func(io.Writer) error) error {
 	if err == nil {
 		err = createFile(path, fill)
 	}
-	if err != nil {
+	var onDisk *fs.PathError
+	switch {
+	case errors.As(err, &onDisk): // names the file itself; the library's words before it do not help
+		return onDisk
+	case err != nil:
 		return fmt.Errorf("write %s: %w", name, err)
 	}
 	return nil

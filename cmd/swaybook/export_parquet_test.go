@@ -29,15 +29,21 @@ func (c *stoppedAt) Err() error {
 	return c.Context.Err()
 }
 
-// Wherever an export is stopped, nothing is left of it, and what was there before stays.
-func TestAStoppedExportLeavesNothing(t *testing.T) {
-	dir := t.TempDir()
-	path := filepath.Join(dir, "s.db")
+// storeOfAT2 is a small store in the folder.
+func storeOfAT2(t *testing.T, dir string) (path string) {
+	t.Helper()
+	path = filepath.Join(dir, "s.db")
 	ingest := exec.Command("swaybook", "--quiet", "--store", path, "ingest", filepath.Join("..", "..", "testdata", "records", "at2"))
 	if exit, ok := errors.AsType[*exec.ExitError](ingest.Run()); !ok || exit.ExitCode() != exitRejected {
 		t.Fatalf("ingest: %v", exit)
 	}
-	store, err := db.Open(t.Context(), path, pipeline.SolverVersion)
+	return path
+}
+
+// Wherever an export is stopped, nothing is left of it, and what was there before stays.
+func TestAStoppedExportLeavesNothing(t *testing.T) {
+	dir := t.TempDir()
+	store, err := db.Open(t.Context(), storeOfAT2(t, dir), pipeline.SolverVersion)
 	if err != nil {
 		t.Fatal(err)
 	}
