@@ -188,7 +188,7 @@ func checkFile(path string) error {
 }
 
 // checkSkipping checks that who asks for one period may skip groups of rows by what the file
-// says of them.
+// says of them, so there must be several, of 65,536 rows each.
 func checkSkipping(dir string, all *table) error {
 	files, err := parts(dir, "ordinates")
 	if err != nil {
@@ -227,7 +227,7 @@ func checkSkipping(dir string, all *table) error {
 			return err
 		}
 	}
-	if wanted < 1 || groups > 1 && wanted == groups {
+	if wanted < 1 || wanted == groups {
 		return fmt.Errorf("of %d groups of rows %d may hold one period", groups, wanted)
 	}
 	fmt.Printf("groups of rows: %d of %d may hold the shortest period\n", wanted, groups)
