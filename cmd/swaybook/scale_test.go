@@ -21,6 +21,7 @@ import (
 var (
 	scaleTo     = flag.Int("scale", 0, "components of TestScale, 0 for none; it measures and prints, and holds equal digests only")
 	scaleShards = flag.Int("scale-shards", 8, "shards of TestScale")
+	scaleKeep   = flag.String("scale-keep", "", "empty folder in which TestScale leaves its files and stores")
 	scaleWhole  = flag.Bool("scale-whole", false, "have TestScale ingest all at once, too, to compare the digests")
 )
 
@@ -37,7 +38,10 @@ func TestScale(t *testing.T) {
 	if *scaleTo == 0 {
 		t.Skip("give -scale N to measure N components")
 	}
-	dir := t.TempDir()
+	dir := *scaleKeep
+	if dir == "" {
+		dir = t.TempDir()
+	}
 	inventComponents(t, filepath.Join(dir, "records"), *scaleTo)
 	m := measurements{t: t, dir: dir}
 	records := "records"
