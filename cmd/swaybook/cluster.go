@@ -58,6 +58,7 @@ func clusterCommand() *cli.Command {
 func jobFlags() []cli.Flag {
 	return []cli.Flag{
 		&cli.IntFlag{Name: "shards", Value: 16, Usage: "how many parts, of a task each"},
+		&cli.IntFlag{Name: "at-once", DefaultText: "all", Usage: "fill `K` shards at the same time, at most"},
 		&cli.IntFlag{Name: "workers", Value: 4, Usage: "files that a task has in work at the same time, and its processors"},
 		&cli.IntFlag{Name: "memory", Value: 1024, Usage: "what a task may take, in MiB"},
 		&cli.StringFlag{Name: "name", DefaultText: "the study's file", Usage: "what the jobs are called"},
@@ -67,8 +68,8 @@ func jobFlags() []cli.Flag {
 	}
 }
 
-// runCluster writes the files that a scheduler's make gives for a study.
-func runCluster(c *cli.Context, make func(cluster.Jobs, *study.Study) ([]cluster.File, error)) error {
+// runCluster writes the files that fill gives for a study.
+func runCluster(c *cli.Context, fill func(cluster.Jobs, *study.Study) ([]cluster.File, error)) error {
 	if c.NArg() != 1 {
 		return usagef("cluster %s needs one STUDY.toml, found %d arguments", c.Command.Name, c.NArg())
 	}
@@ -90,7 +91,7 @@ func runCluster(c *cli.Context, make func(cluster.Jobs, *study.Study) ([]cluster
 	if out == "" {
 		out = jobs.Name + "-" + c.Command.Name
 	}
-	files, err := make(jobs, p.plan.study)
+	files, err := fill(jobs, p.plan.study)
 	if err != nil {
 		return usagef("%w", err)
 	}
@@ -107,6 +108,9 @@ func newJobs(c *cli.Context, s *study.Study) (cluster.Jobs, error) {
 	}
 	if j.Name == "" {
 		j.Name = cluster.NameOf(j.Study)
+	}
+	if j.AtOnce = j.Shards; c.IsSet("at-once") {
+		j.AtOnce = c.Int("at-once")
 	}
 	var err error
 	switch isHere := c.Command.Name == "slurm"; {

@@ -2,6 +2,7 @@ package cluster
 
 import (
 	"flag"
+	"fmt"
 	"os"
 	"path/filepath"
 	"slices"
@@ -17,7 +18,7 @@ var update = flag.Bool("update", false, "rewrite the job files in testdata")
 const hostile = "/srv/a b/it's \"100%\" #1: $(HOME) `id` \\ *?[x]{y}~!&|;<>\t\n- é $$ .toml"
 
 func jobs(study string) Jobs {
-	return Jobs{Name: "quays", Shards: 4, Workers: 2, MemoryMiB: 500, Program: "/opt/swaybook", Study: study}
+	return Jobs{Name: "quays", Shards: 4, AtOnce: 4, Workers: 2, MemoryMiB: 500, Program: "/opt/swaybook", Study: study}
 }
 
 var pods = Pods{Image: "swaybook:1", Claims: []Claim{{Name: "region", Path: "/srv"}, {Name: "records", Path: "/data/y", IsReadOnly: true}}}
@@ -26,11 +27,16 @@ var pods = Pods{Image: "swaybook:1", Claims: []Claim{{Name: "region", Path: "/sr
 // Kubernetes (testdata/cluster/kubernetes) and by the checker of scripts in .ci/run.
 func TestGolden(t *testing.T) {
 	for folder, study := range map[string]string{"plain": "/srv/quays/quays.toml", "hostile": hostile} {
-		scripts, err := Slurm(jobs(study), []string{"--partition=long", "--time=12:00:00"})
+		j, options := jobs(study), []string{"--partition=long", "--time=12:00:00"}
+		if study == hostile {
+			j.AtOnce = 2
+			options = []string{"-p long", `--comment=it's "10 %" \ # $HOME`}
+		}
+		scripts, err := Slurm(j, options)
 		if err != nil {
 			t.Fatal(err)
 		}
-		manifests, err := Kubernetes(jobs(study), pods)
+		manifests, err := Kubernetes(j, pods)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -114,6 +120,7 @@ func TestMistakes(t *testing.T) {
 	for want, j := range map[string]Jobs{
 		"name":    change(func(j *Jobs) { j.Name = "A" }),
 		"shards":  change(func(j *Jobs) { j.Shards = MaxShards + 1 }),
+		"at-once": change(func(j *Jobs) { j.AtOnce = 0 }),
 		"workers": change(func(j *Jobs) { j.Workers = 0 }),
 		"memory":  change(func(j *Jobs) { j.MemoryMiB = -1 }),
 		"program": change(func(j *Jobs) { j.Program = "" }),
@@ -126,9 +133,14 @@ func TestMistakes(t *testing.T) {
 			t.Errorf("Kubernetes of a wrong %s: %v", want, err)
 		}
 	}
-	for _, option := range []string{"", "long", "--comment=a\nrm -rf x", "--comment=\x00"} {
-		if _, err := Slurm(jobs("/a.toml"), []string{option}); err == nil {
-			t.Errorf("option %q is taken", option)
+	for option, want := range map[string]string{
+		"": "want one of sbatch", "-": "want one", "--": "want one", "long": "want one", `--com"ment=a`: "want one",
+		"--comment=a\nrm -rf x": "want one", "--comment=\x00": "want one",
+		"--array=1-20%4": "--at-once", "--array": "--at-once", "--arr 3": "--at-once", "-a3": "--at-once", "-a 3": "--at-once",
+		"--dependency=singleton": "both jobs", "--dep=singleton": "both jobs", "-dsingleton": "both jobs",
+	} {
+		if _, err := Slurm(jobs("/a.toml"), []string{"--partition=long", option}); err == nil || !strings.Contains(err.Error(), want) || !strings.Contains(err.Error(), fmt.Sprintf("option %q", option)) {
+			t.Errorf("option %q: %v, want an error with %q", option, err, want)
 		}
 	}
 	for want, p := range map[string]Pods{

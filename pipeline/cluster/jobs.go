@@ -12,6 +12,7 @@ import (
 type Jobs struct {
 	Name    string // of the study, as the jobs bear it; see IsName
 	Shards  int    // 1 to MaxShards
+	AtOnce  int    // shards that are filled at the same time, at most
 	Workers int    // of a task, each of which takes a processor
 	// MemoryMiB is what a task may take.
 	MemoryMiB int
@@ -62,6 +63,9 @@ func (j Jobs) Validate() error {
 	}
 	if j.Shards < 1 || j.Shards > MaxShards {
 		wrong("shards %d: want 1 to %d", j.Shards, MaxShards)
+	}
+	if j.AtOnce < 1 {
+		wrong("at-once %d: want a positive number", j.AtOnce)
 	}
 	if j.Workers < 1 {
 		wrong("workers %d: want a positive number", j.Workers)

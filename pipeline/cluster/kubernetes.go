@@ -58,7 +58,7 @@ func Kubernetes(j Jobs, p Pods) ([]File, error) {
 	}
 	shards := newJob(j.Name+"-shards", j.pod(p, j.fill()))
 	shards.Spec.CompletionMode = "Indexed"
-	shards.Spec.Completions, shards.Spec.Parallelism = j.Shards, j.Shards
+	shards.Spec.Completions, shards.Spec.Parallelism = j.Shards, min(j.Shards, j.AtOnce)
 	shards.Spec.BackoffLimitPerIndex = tries
 	shards.Spec.PodFailurePolicy = failing(2)
 	combine := newJob(j.Name+"-combine", j.pod(p, j.combine()))

@@ -13,6 +13,15 @@ func Quote(word string) string {
 	return "'" + strings.ReplaceAll(word, "'", `'\''`) + "'"
 }
 
+// slurmWord is a word as sbatch reads it off a line of options, whatever is in it: between
+// quotes a backslash takes what follows as it is, and # begins no comment. Nothing is replaced.
+func slurmWord(word string) string {
+	if word != "" && strings.Trim(word, plain+"=") == "" {
+		return word
+	}
+	return `"` + strings.NewReplacer(`\`, `\\`, `"`, `\"`).Replace(word) + `"`
+}
+
 // line is a command of several words.
 func line(words []string) string {
 	quoted := make([]string, len(words))

@@ -3,6 +3,7 @@
 package cluster
 
 import (
+	"bufio"
 	"bytes"
 	"errors"
 	"fmt"
@@ -46,6 +47,68 @@ func TestQuoteIsReadByShells(t *testing.T) {
 	}
 }
 
+// TestOptionsAreReadBySlurm has sbatch say what it reads off job files. It needs no Slurm at
+// work: it says so before it looks for one.
+func TestOptionsAreReadBySlurm(t *testing.T) {
+	sbatch, err := exec.LookPath("sbatch")
+	if err != nil {
+		t.Skip("no sbatch here")
+	}
+	dir := t.TempDir()
+	const conf = "ClusterName=none\nSlurmctldHost=localhost(127.0.0.1)\nAuthType=auth/none\nNodeName=localhost\nPartitionName=all Nodes=localhost\n"
+	j := jobs("/a.toml")
+	j.AtOnce = 3
+	for option, want := range map[string]string{
+		"--comment=plain":                   "--comment=plain",
+		"--comment=a b":                     "--comment=a b",
+		"--comment a b":                     "--comment=a b",
+		"--comment=":                        "--comment=",
+		"--exclusive":                       "--exclusive",
+		"-p long":                           "-plong",
+		"-plong":                            "-plong",
+		"--constraint=a&(b|c)":              "--constraint=a&(b|c)",
+		`--comment=it's "100%" \ # $HOME é`: `--comment=it's "100%" \ # $HOME é`,
+		`--comment="a b"`:                   `--comment="a b"`,
+	} {
+		files, err := Slurm(j, []string{option})
+		if err != nil {
+			t.Fatal(err)
+		}
+		script := filepath.Join(dir, "shards.sh")
+		if err := errors.Join(os.WriteFile(script, []byte(files[0].Text), 0o666), os.WriteFile(filepath.Join(dir, "slurm.conf"), []byte(conf), 0o666)); err != nil {
+			t.Fatal(err)
+		}
+		read := readBySlurm(t, exec.Command(sbatch, "-vvv", "--test-only", script), filepath.Join(dir, "slurm.conf"))
+		if len(read) < 2 || read[len(read)-1] != want || read[1] != "--array=1-4%3" {
+			t.Errorf("option %q: sbatch reads %q, want %q at the end", option, read, want)
+		}
+	}
+}
+
+// readBySlurm are the options that sbatch says it finds in its script, until it looks for a
+// controller, which there is not.
+func readBySlurm(t *testing.T, sbatch *exec.Cmd, conf string) (read []string) {
+	t.Helper()
+	sbatch.Env = append(os.Environ(), "SLURM_CONF="+conf)
+	said, err := sbatch.StderrPipe()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := sbatch.Start(); err != nil {
+		t.Fatal(err)
+	}
+	for lines := bufio.NewScanner(said); lines.Scan(); {
+		if _, text, ok := strings.Cut(lines.Text(), `Found in script, argument "`); ok {
+			read = append(read, strings.TrimSuffix(text, `"`))
+		} else if strings.Contains(lines.Text(), "defined options") {
+			break
+		}
+	}
+	sbatch.Process.Kill()
+	sbatch.Wait() // with an error: it was killed
+	return read
+}
+
 // stage is a folder of a name with everything in it, with a program that does as the test says
 // and notes its arguments, and commands of Slurm that note theirs.
 type stage struct {
@@ -54,7 +117,7 @@ type stage struct {
 	files map[string]string
 }
 
-func newStage(t *testing.T, program string) *stage {
+func newStage(t *testing.T, program string, change ...func(*Jobs)) *stage {
 	t.Helper()
 	s := &stage{t: t, dir: filepath.Join(t.TempDir(), "it's \"here\" $HOME"), files: map[string]string{}}
 	s.script("program", `printf '%s\n' "$@" >>"$0.said"`+"\n"+program)
@@ -62,6 +125,9 @@ func newStage(t *testing.T, program string) *stage {
 	s.script("bin/sbatch", `printf '%s ' "$@" >>"$0.said"; for last in "$@"; do :; done; test -f "$last" && echo "$(wc -l <"$last");here"`)
 	j := jobs(filepath.ToSlash(filepath.Join(s.dir, "the study.toml")))
 	j.Program = filepath.ToSlash(filepath.Join(s.dir, "program"))
+	for _, f := range change {
+		f(&j)
+	}
 	files, err := Slurm(j, nil)
 	if err != nil {
 		t.Fatal(err)
@@ -207,13 +273,17 @@ func waitFor(t *testing.T, path, word string) {
 func TestSubmit(t *testing.T) {
 	for _, sh := range shells(t) {
 		for _, c := range []struct {
-			args []string
-			want string
+			args   []string
+			atOnce int
+			want   string
 		}{
-			{nil, "--parsable --array=1-4 shards.sh --parsable --dependency=afterok:38 combine.sh "},
-			{[]string{"3,1-2"}, "--parsable --array=3,1-2 shards.sh --parsable --dependency=afterok:38 combine.sh "},
+			{nil, 4, "--parsable --array=1-4 shards.sh --parsable --dependency=afterok:38 combine.sh "},
+			{[]string{"3,1-2"}, 4, "--parsable --array=3,1-2 shards.sh --parsable --dependency=afterok:38 combine.sh "},
+			{nil, 2, "--parsable --array=1-4%2 shards.sh --parsable --dependency=afterok:38 combine.sh "},
+			{[]string{"3,1-2"}, 2, "--parsable --array=3,1-2%2 shards.sh --parsable --dependency=afterok:38 combine.sh "},
+			{[]string{"1-3%1"}, 2, "--parsable --array=1-3%1 shards.sh --parsable --dependency=afterok:38 combine.sh "},
 		} {
-			s := newStage(t, "")
+			s := newStage(t, "", func(j *Jobs) { j.AtOnce = c.atOnce })
 			s.write("shards.sh", strings.Repeat("\n", 38), 0o666)
 			var out bytes.Buffer
 			if got := code(s.start(sh, "submit.sh", &out, c.args...).Run()); got != 0 {

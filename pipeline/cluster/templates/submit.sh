@@ -3,6 +3,13 @@
 # 2,5-7, only these shards are filled again.
 set -eu
 cd -- "$(dirname -- "$0")"
-shards=$(sbatch --parsable --array="${1:-{{.Array}}}" shards.sh)
+tasks=${1:-{{.Array}}}
+{{- if .Limit}}
+case $tasks in
+*%*) ;; # how many at a time was said
+*) tasks=$tasks{{.Limit}} ;;
+esac
+{{- end}}
+shards=$(sbatch --parsable --array="$tasks" shards.sh)
 combine=$(sbatch --parsable --dependency="afterok:${shards%%;*}" combine.sh)
 printf 'shards: job %s\ncombine: job %s\n' "${shards%%;*}" "${combine%%;*}"

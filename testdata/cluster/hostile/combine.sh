@@ -9,8 +9,8 @@
 #SBATCH --open-mode=append
 #SBATCH --requeue
 #SBATCH --signal=B:USR1@60
-#SBATCH --partition=long
-#SBATCH --time=12:00:00
+#SBATCH -plong
+#SBATCH "--comment=it's \"10 %\" \\ # $HOME"
 
 # A minute before the time limit Slurm sends USR1 to this script alone. swaybook then stops in
 # order, and the job is queued again, to go on with what is stored. TERM goes to all processes

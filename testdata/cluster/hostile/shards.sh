@@ -1,7 +1,7 @@
 #!/bin/sh
 # Fills one of 4 shards of the store of a study.
 #SBATCH --job-name=quays-shards
-#SBATCH --array=1-4
+#SBATCH --array=1-4%2
 #SBATCH --ntasks=1
 #SBATCH --cpus-per-task=2
 #SBATCH --mem=500M
@@ -9,8 +9,8 @@
 #SBATCH --open-mode=append
 #SBATCH --requeue
 #SBATCH --signal=B:USR1@60
-#SBATCH --partition=long
-#SBATCH --time=12:00:00
+#SBATCH -plong
+#SBATCH "--comment=it's \"10 %\" \\ # $HOME"
 
 # A minute before the time limit Slurm sends USR1 to this script alone. swaybook then stops in
 # order, and the job is queued again, to go on with what is stored. TERM goes to all processes

@@ -3,6 +3,11 @@
 # 2,5-7, only these shards are filled again.
 set -eu
 cd -- "$(dirname -- "$0")"
-shards=$(sbatch --parsable --array="${1:-1-4}" shards.sh)
+tasks=${1:-1-4}
+case $tasks in
+*%*) ;; # how many at a time was said
+*) tasks=$tasks%2 ;;
+esac
+shards=$(sbatch --parsable --array="$tasks" shards.sh)
 combine=$(sbatch --parsable --dependency="afterok:${shards%%;*}" combine.sh)
 printf 'shards: job %s\ncombine: job %s\n' "${shards%%;*}" "${combine%%;*}"
