@@ -84,8 +84,11 @@ type combineReport struct {
 	Missing   []int           `json:"missing_shards"`
 	Unseen    *unseenReport   `json:"unseen"`
 	Taken     gatheredReport  `json:"taken_over"`
-	IsRebuilt bool            `json:"is_rebuilt"`
-	Edition   int64           `json:"edition"`
+	IsRebuilt bool            `json:"is_rebuilt"` // files were given their places anew
+	IsNew     bool            `json:"is_new_edition"`
+	Edition   int64           `json:"edition"` // that is published
+
+	newest, before int64 // editions
 }
 
 type combinedShard struct {
@@ -185,7 +188,7 @@ func newCombineReport(o combineOptions, parts []*db.Part, done pipeline.Combinat
 	r := combineReport{
 		ingestReport: newIngestReport(o.ingest, done.Summary, true), Shards: []combinedShard{}, Count: parts[0].Count, Missing: append([]int{}, done.Missing...), Unseen: newUnseenReport(done.Unseen),
 		Taken:     gatheredReport{done.Gathered.Files, done.Gathered.Gone, done.Gathered.Computations, done.Gathered.Damaged},
-		IsRebuilt: done.IsRead, Edition: done.Published,
+		IsRebuilt: done.IsRead, IsNew: done.IsNew, Edition: done.Published, newest: done.Edition, before: done.Before,
 	}
 	for _, p := range parts {
 		r.Shards = append(r.Shards, combinedShard{p.Number, p.Path()})
@@ -211,14 +214,31 @@ func (r combineReport) print(w io.Writer, asJSON bool) error {
 		p.printf("Shards that are missing: %s\n", numbers(r.Missing))
 	}
 	r.Unseen.print(p)
-	if !r.IsRebuilt {
+	switch {
+	case p.err != nil:
+		return p.err
+	case r.IsRebuilt:
+		p.err = r.ingestReport.print(w, false)
+	case r.IsNew: // which other results have made of the same files
+		r.printComputed(p)
+		r.printRotation(p)
+	}
+	r.printEdition(p)
+	return p.err
+}
+
+// printEdition says what questions read now.
+func (r combineReport) printEdition(p *printer) {
+	switch {
+	case r.Edition != r.newest:
+		p.printf("Edition %d stays published, as somebody wished; the newest is %d.\n", r.Edition, r.newest)
+	case r.Edition != r.before && r.before != 0:
+		p.printf("Edition %d is published, before it was %d.\n", r.Edition, r.before)
+	case r.Edition != r.before:
+		p.printf("Edition %d is published.\n", r.Edition)
+	default:
 		p.printf("Nothing is new: edition %d is that of the shards.\n", r.Edition)
-		return p.err
 	}
-	if p.err != nil {
-		return p.err
-	}
-	return r.ingestReport.print(w, false)
 }
 
 // numbers lists numbers, and no more than people read.

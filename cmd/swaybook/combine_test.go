@@ -3,6 +3,7 @@ package main
 import (
 	"bytes"
 	"context"
+	"encoding/json"
 	"fmt"
 	"io"
 	"os"
@@ -210,6 +211,53 @@ func TestCombineFollowsShards(t *testing.T) {
 	same("split.db", shards)
 	if text := combines(t, exitDone, out, shards...); !strings.Contains(text, "Nothing is new") {
 		t.Errorf("combined again: %s", text)
+	}
+}
+
+// TestCombineSaysWhatIsNew holds that a combination says of which edition questions are
+// answered, also where other results have made it of the same files.
+func TestCombineSaysWhatIsNew(t *testing.T) {
+	dir := t.TempDir()
+	records := filepath.Join(dir, "records")
+	if _, err := demo.Write(records, demo.Options{Events: 1, Stations: 3, Seed: 3}); err != nil {
+		t.Fatal(err)
+	}
+	ingest := []string{"ingest", records, "--periods", "1", "--dampings", "5%"}
+	out, shards := filepath.Join(dir, "out.db"), ingestShards(t, dir, 2, ingest)
+	for _, c := range []struct {
+		name, want       string
+		change           func()
+		isRebuilt, isNew bool
+	}{
+		{"first", "Edition 1 is published.", func() {}, true, true},
+		{"again", "Nothing is new: edition 1 is that of the shards.", func() {}, false, false},
+		{"another recipe", "is published, before it was 1.", func() {
+			for i, shard := range shards {
+				if code := runQuietly(t.Context(), shard, "ingest", "--recipe", "as-delivered", "--shard", fmt.Sprintf("%d/2", i+1)); code != exitDone {
+					t.Fatalf("exit code %d", code)
+				}
+			}
+		}, false, true},
+		{"again", "Nothing is new: edition", func() {}, false, false},
+	} {
+		c.change()
+		as := filepath.Join(dir, "as-json.db")
+		if data, err := os.ReadFile(out); err == nil {
+			if err := os.WriteFile(as, data, 0o666); err != nil {
+				t.Fatal(err)
+			}
+		}
+		if text := combines(t, exitDone, out, shards...); !strings.Contains(text, c.want) {
+			t.Errorf("%s: %q does not say %q", c.name, text, c.want)
+		}
+		var got struct {
+			IsRebuilt bool `json:"is_rebuilt"`
+			IsNew     bool `json:"is_new_edition"`
+		}
+		text := combines(t, exitDone, as, append(shards, "--json")...)
+		if err := json.Unmarshal([]byte(text), &got); err != nil || got.IsRebuilt != c.isRebuilt || got.IsNew != c.isNew {
+			t.Errorf("%s: %+v, %v, want rebuilt %v, new %v: %s", c.name, got, err, c.isRebuilt, c.isNew, text)
+		}
 	}
 }
 

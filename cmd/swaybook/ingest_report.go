@@ -125,15 +125,7 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 	if r.Channels > 0 {
 		p.printf("  channels rejected from files stored     %7d\n", r.Channels)
 	}
-	if r.Recomputed > 0 {
-		p.printf("  held components computed anew           %7d\n", r.Recomputed)
-	}
-	if r.NotRecomputed > 0 {
-		p.printf("  held components that could not be       %7d\n", r.NotRecomputed)
-		p.reasons(r.Unsolved)
-	} else if r.Unconditioned > 0 {
-		p.printf("  held components the recipe fails on     %7d  as before; see query records --rejected\n", r.Unconditioned)
-	}
+	r.printComputed(p)
 	r.printRotation(p)
 	if r.Stored == 0 && r.Rotated == 0 && r.Recomputed == 0 {
 		p.printf("Nothing new was stored.\n")
@@ -157,6 +149,18 @@ func (r ingestReport) print(w io.Writer, asJSON bool) error {
 		p.printf("Catalogue: %s\n", note)
 	}
 	return p.err
+}
+
+func (r ingestReport) printComputed(p *printer) {
+	if r.Recomputed > 0 {
+		p.printf("  held components computed anew           %7d\n", r.Recomputed)
+	}
+	if r.NotRecomputed > 0 {
+		p.printf("  held components that could not be       %7d\n", r.NotRecomputed)
+		p.reasons(r.Unsolved)
+	} else if r.Unconditioned > 0 {
+		p.printf("  held components the recipe fails on     %7d  as before; see query records --rejected\n", r.Unconditioned)
+	}
 }
 
 func (r ingestReport) printRotation(p *printer) {
