@@ -86,6 +86,7 @@ type combineReport struct {
 	Taken     gatheredReport  `json:"taken_over"`
 	IsRebuilt bool            `json:"is_rebuilt"` // files were given their places anew
 	IsNew     bool            `json:"is_new_edition"`
+	Refused   int             `json:"rejected_in_store"`
 	Edition   int64           `json:"edition"` // that is published
 
 	newest, before int64 // editions
@@ -145,13 +146,16 @@ func combine(ctx context.Context, store *db.Store, parts []*db.Part, o combineOp
 		return err
 	}
 	report := newCombineReport(o, parts, done)
+	if report.Refused, err = rejectedFiles(ctx, store); err != nil {
+		return err
+	}
 	if err := report.print(w, o.ingest.json); err != nil {
 		return err
 	}
 	switch {
 	case done.Summary.Damaged > 0:
 		return fmt.Errorf("%s is damaged (records: %d); combine the shards into a new store", o.ingest.store, done.Summary.Damaged)
-	case !done.Complete():
+	case report.Refused > 0 || !done.Complete():
 		return errRejected
 	}
 	return nil
@@ -222,6 +226,9 @@ func (r combineReport) print(w io.Writer, asJSON bool) error {
 	case r.IsNew: // which other results have made of the same files
 		r.printComputed(p)
 		r.printRotation(p)
+	}
+	if !r.IsRebuilt {
+		p.rejected(r.Store, r.Refused)
 	}
 	r.printEdition(p)
 	return p.err

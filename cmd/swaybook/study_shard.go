@@ -43,7 +43,11 @@ func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w i
 		case err != nil:
 			return err
 		}
-		return printStudyShard(w, o, newIngestReport(ingest, done.Summary, true), done)
+		report := studyShardReport{ingestReport: newIngestReport(ingest, done.Summary, true), IsRead: done.IsRead}
+		if report.Refused, err = rejectedFiles(ctx, store); err != nil {
+			return err
+		}
+		return report.end(w, o.json, done)
 	})
 }
 
@@ -52,19 +56,31 @@ func (p *studyPlan) followed(o reprocessOptions, approve func(context.Context, i
 	return pipeline.Study{Name: p.study.Name.Value, File: p.study.Path(), Decided: p.decided, Rehash: o.rehash, Approve: approve}
 }
 
-func printStudyShard(w io.Writer, o reprocessOptions, report ingestReport, done pipeline.Reprocessed) error {
-	var err error
-	if done.IsRead || o.json {
-		err = report.print(w, o.json)
-	} else {
-		_, err = fmt.Fprintf(w, "%s: no file has changed since the last run.\n", report.Store)
+// studyShardReport is what is printed of a shard that was filled.
+type studyShardReport struct {
+	ingestReport
+	IsRead  bool `json:"is_read"`
+	Refused int  `json:"rejected_in_store"`
+}
+
+// end prints the report, and returns what the run ends with.
+func (r studyShardReport) end(w io.Writer, asJSON bool, done pipeline.Reprocessed) error {
+	p := &printer{w: w}
+	switch {
+	case asJSON:
+		p.err = writeJSON(w, r)
+	case r.IsRead:
+		p.err = r.print(w, false)
+	default:
+		p.printf("%s: no file has changed since the last run.\n", r.Store)
+		p.rejected(r.Store, r.Refused)
 	}
 	switch {
-	case err != nil:
-		return err
+	case p.err != nil:
+		return p.err
 	case done.Damaged > 0:
-		return fmt.Errorf("%s is damaged (records: %d)", report.Store, done.Damaged)
-	case !done.Complete():
+		return fmt.Errorf("%s is damaged (records: %d)", r.Store, done.Damaged)
+	case r.Refused > 0 || !done.Complete():
 		return errRejected
 	}
 	return nil

@@ -173,10 +173,18 @@ func (r *studyRun) print(p *printer) {
 		s.Drift.print(p)
 	}
 	r.printOutputs(p)
-	if s.Rejected != nil && *s.Rejected > 0 && s.Ingest == nil {
-		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", *s.Rejected, cluster.Quote(s.Store))
+	if s.Rejected != nil && s.Ingest == nil {
+		p.rejected(s.Store, *s.Rejected)
 	}
 	r.printEnd(p)
+}
+
+// rejected says how many of its files a store holds as rejected, where no file was read to say
+// which.
+func (p *printer) rejected(store string, files int) {
+	if files > 0 {
+		p.printf("Files rejected: %d; see: swaybook --store %s query records --rejected\n", files, cluster.Quote(store))
+	}
 }
 
 // shownCodes is how many codes of a kind the text of a run lists.
