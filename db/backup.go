@@ -192,7 +192,7 @@ func stepThrough(ctx context.Context, from copier, part string) error {
 func explainDisk(err error) error {
 	switch codeOf(err) {
 	case sqlite3.SQLITE_FULL:
-		return errors.New("the disk is full")
+		return ErrFull
 	case sqlite3.SQLITE_IOERR:
 		return fmt.Errorf("the store cannot be read or the copy cannot be written: %w", err)
 	}

@@ -5,8 +5,6 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
-	"io/fs"
-	"os"
 	"sync"
 )
 
@@ -76,7 +74,10 @@ func (i *Inspection) Report(f Fault) { i.found(f) }
 // handle that may write would do. Without a log there is nothing to carry over, and only a
 // handle that may write leaves no empty log behind.
 func openInspected(ctx context.Context, path string) (*sql.DB, error) {
-	if info, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) || err == nil && info.Size() == 0 {
+	if err := refuseFolder(path); err != nil {
+		return nil, err
+	}
+	if isAbsent(path) {
 		return nil, ErrNoStore
 	}
 	mode := "rw"

@@ -227,3 +227,21 @@ func TestAsDeliveredIsWhatTheMigrationWrote(t *testing.T) {
 		t.Errorf("the migration does not write %s with hash %s", r.Steps, r.Hash())
 	}
 }
+
+// A disk that is full is told as that, once, however many have a hand in the message. SQLite
+// says the same of a file that has reached its bound.
+func TestFullIsSaidOnce(t *testing.T) {
+	s := newStore(t)
+	err := s.Update(t.Context(), func(tx *Tx) error {
+		if err := tx.exec(t.Context(), `PRAGMA max_page_count = 1`); err != nil { // as many as there are
+			return err
+		}
+		return explain(tx.exec(t.Context(), `CREATE TABLE more AS SELECT randomblob(1 << 20)`))
+	})
+	if !errors.Is(err, ErrFull) {
+		t.Fatalf("%v, want ErrFull", err)
+	}
+	if text := fmt.Errorf("twice: %w", explain(err)).Error(); strings.Count(text, ErrFull.Error()) != 1 || !strings.Contains(text, s.Path()) {
+		t.Errorf("%q, want the store and %q once", text, ErrFull)
+	}
+}

@@ -5,6 +5,8 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+
+	sqlite3 "modernc.org/sqlite/lib"
 )
 
 // Part is a store that is a shard, as one transaction sees it.
@@ -25,6 +27,9 @@ type Part struct {
 // ErrUnfinished where its last run is at work or did not come to its end.
 func OpenPart(ctx context.Context, path string) (*Part, error) {
 	p, err := openPart(ctx, path)
+	if codeOf(err) == sqlite3.SQLITE_CORRUPT {
+		return nil, fmt.Errorf("open shard %s: %w; remove it and run its shard again", path, explain(err))
+	}
 	if err != nil {
 		return nil, fmt.Errorf("open shard %s: %w", path, explain(err))
 	}
@@ -54,8 +59,11 @@ func (p *Part) describe(ctx context.Context) (err error) {
 	if p.Shard, ok, err = shardOf(ctx, p.tx); err != nil {
 		return err
 	}
-	if !ok || p.IsCombined() {
+	switch {
+	case !ok:
 		return errors.New("it is no shard, as ingest --shard makes them")
+	case p.IsCombined():
+		return fmt.Errorf("it is %s, and no shard itself", p.Shard)
 	}
 	t := &Tx{tx: p.tx}
 	last, err := t.idOf(ctx, `SELECT coalesce((SELECT outcome = 'done' FROM run ORDER BY id DESC LIMIT 1), 0)`)
@@ -89,5 +97,5 @@ func (p *Part) Close() error {
 
 // damaged is the error of what the shard has lost.
 func (p *Part) damaged(what string, err error) error {
-	return fmt.Errorf("%s: %s: %w; run %s again into a new store", p.path, what, err, p.Shard)
+	return fmt.Errorf("%s: %s: %w; remove the file and run %s again", p.path, what, err, p.Shard)
 }

@@ -60,6 +60,14 @@ func MustExist(path string) error {
 	return nil
 }
 
+// refuseFolder says that a folder is no store, which SQLite would take for a broken disk.
+func refuseFolder(path string) error {
+	if info, err := os.Stat(path); err == nil && info.IsDir() {
+		return errors.New("it is a folder")
+	}
+	return nil
+}
+
 // isAbsent reports whether nothing is at the path, or nothing in the file.
 func isAbsent(path string) bool {
 	info, err := os.Stat(path)
@@ -127,6 +135,9 @@ func openWriter(ctx context.Context, path, solver string) (*Store, error) {
 // refuseForeign looks, without changing it, whether the file at path is another
 // program's.
 func refuseForeign(ctx context.Context, path string) error {
+	if err := refuseFolder(path); err != nil {
+		return err
+	}
 	if info, err := os.Stat(path); err != nil || info.Size() == 0 {
 		return nil // a new store
 	}
@@ -182,6 +193,9 @@ func codeOf(err error) int {
 }
 
 func openReader(ctx context.Context, path, solver string) (*Store, error) {
+	if err := refuseFolder(path); err != nil {
+		return nil, err
+	}
 	if isAbsent(path) {
 		return nil, ErrNoStore
 	}
@@ -266,25 +280,47 @@ func dsn(path, mode string, timeoutMS int, more string) string {
 	return u.String() + "?mode=" + mode + "&" + pragmas + "&" + more
 }
 
-// explain turns the driver's words for what people meet into ours.
+// ErrFull says that there is no room on the disk.
+var ErrFull = errors.New("the disk is full")
+
+// explained is an error of the driver's, with our words for it.
+type explained struct{ what, err error }
+
+func (e *explained) Error() string   { return e.what.Error() + ": " + e.err.Error() }
+func (e *explained) Unwrap() []error { return []error{e.what, e.err} }
+
+// explain turns the driver's words for what people meet into ours, once, however many call it.
 func explain(err error) error {
 	if err == nil {
 		return nil
 	}
+	if _, isDone := errors.AsType[*explained](err); isDone {
+		return err
+	}
+	if what := meaning(err); what != nil {
+		return &explained{what, err}
+	}
+	return err
+}
+
+// meaning is what an error of the driver's means for people, nil where it says it itself.
+func meaning(err error) error {
 	text := err.Error()
 	switch {
 	case strings.Contains(text, "file is not a database"):
-		return fmt.Errorf("the file is not a swaybook store: %w", err)
+		return errors.New("the file is not a swaybook store")
 	case strings.Contains(text, "unable to open database file"):
-		return fmt.Errorf("the file or its folder cannot be opened: %w", err)
+		return errors.New("the file or its folder cannot be opened")
 	case isBusy(err):
-		return fmt.Errorf("another process is writing to the store: %w", err)
+		return errors.New("another process is writing to the store")
 	case strings.Contains(text, "readonly database"):
-		return fmt.Errorf("the file or its folder may not be written to: %w", err)
+		return errors.New("the file or its folder may not be written to")
 	case codeOf(err) == sqlite3.SQLITE_FULL:
-		return fmt.Errorf("the disk is full: %w", err)
+		return ErrFull
+	case codeOf(err) == sqlite3.SQLITE_CORRUPT:
+		return errors.New("the file is damaged, or not all of it is there")
 	case codeOf(err) == sqlite3.SQLITE_IOERR:
-		return fmt.Errorf("the system cannot read or write its files, for want of room or of a sound disk: %w", err)
+		return errors.New("the system cannot read or write its files, for want of room or of a sound disk")
 	}
-	return err
+	return nil
 }

@@ -296,8 +296,11 @@ func TestCombineRefuses(t *testing.T) {
 		{"a grid beside another", "periods", []string{shards[0], finer[1]}},
 		{"one twice", "are both shard 1 of 2", []string{shards[0], raw[0]}},
 		{"no shard", "no shard", []string{whole}},
-		{"what is combined", "no shard", []string{combined(t, dir, shards)}},
+		{"what is combined", "it is what is combined of 2 shards, and no shard itself", []string{combined(t, dir, shards)}},
 		{"nothing there", "no such store", []string{filepath.Join(dir, "nothing.db")}},
+		{"a folder", "it is a folder", []string{records}},
+		{"half a shard", "half.db: the file is damaged, or not all of it is there", []string{halfOf(t, shards[0])}},
+		{"half a shard", "remove it and run its shard again", []string{halfOf(t, shards[0])}},
 		{"no store", "not a swaybook store", []string{filepath.Join(records, "catalogue.csv")}},
 	} {
 		if text := combines(t, exitFailed, out, c.shards...); !strings.Contains(text, c.want) {
@@ -306,6 +309,9 @@ func TestCombineRefuses(t *testing.T) {
 		if got := digestOfStore(t, out); got != before {
 			t.Errorf("%s changed the store", c.name)
 		}
+	}
+	if text := combines(t, exitFailed, records, shards...); !strings.Contains(text, records+": it is a folder") {
+		t.Errorf("into a folder: %q", text)
 	}
 	combines(t, exitUsage, out, out)
 	combines(t, exitUsage, out)
@@ -321,6 +327,20 @@ func TestCombineRefuses(t *testing.T) {
 		t.Errorf("everything into a shard's store: exit code %d", code)
 	}
 	combines(t, exitDone, out, raw...) // all of another recipe
+}
+
+// halfOf is a copy of a file of which only half has come.
+func halfOf(t *testing.T, file string) string {
+	t.Helper()
+	data, err := os.ReadFile(file)
+	if err != nil {
+		t.Fatal(err)
+	}
+	half := filepath.Join(t.TempDir(), "half.db")
+	if err := os.WriteFile(half, data[:len(data)/2], 0o666); err != nil {
+		t.Fatal(err)
+	}
+	return half
 }
 
 // combined combines shards into a store of its own.
