@@ -184,7 +184,7 @@ func (c *combining) begin(ctx context.Context, opts Options) (s state, err error
 // some must be among them: what the store has of it is neither old nor new.
 func (c *combining) claim(ctx context.Context, tx *db.Tx) error {
 	if c.study.Name == "" {
-		if err := refuseFollowed(ctx, tx); err != nil {
+		if err := refuseFollowed(ctx, tx, "its shards are combined by reprocess --combine N; name another to combine into"); err != nil {
 			return err
 		}
 	}

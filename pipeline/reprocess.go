@@ -265,11 +265,11 @@ func (p *reprocessing) distrust() {
 // errBarren says that nothing is left to publish.
 var errBarren = errors.New("the recipe can be carried out on none of the components: nothing is published")
 
-// refuseFollowed keeps other runs out of a store that a study keeps.
-func refuseFollowed(ctx context.Context, tx *db.Tx) error {
+// refuseFollowed keeps other runs out of a store that a study keeps, and says what to do instead.
+func refuseFollowed(ctx context.Context, tx *db.Tx, instead string) error {
 	f, ok, err := tx.Followed(ctx)
 	if err != nil || !ok {
 		return err
 	}
-	return fmt.Errorf("the store is kept by the study %s (%s): add the files to its sources and reprocess it, or name another store with --store", f.Name, f.File)
+	return fmt.Errorf("the store is kept by the study %s (%s): %s", f.Name, f.File, instead)
 }

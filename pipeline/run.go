@@ -153,7 +153,7 @@ func begin(ctx context.Context, store Store, opts Options) (state, error) {
 	var s state
 	err := store.Update(ctx, func(tx *db.Tx) error {
 		var err error
-		if err = errors.Join(refuseFollowed(ctx, tx), claim(ctx, tx, opts.Shard)); err != nil {
+		if err = errors.Join(refuseFollowed(ctx, tx, "add the files to its sources and reprocess it, or name another store with --store"), claim(ctx, tx, opts.Shard)); err != nil {
 			return err
 		}
 		if s.generation, err = settleGeneration(ctx, tx, opts.Grid, opts.Recipe); err != nil {

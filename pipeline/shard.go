@@ -60,7 +60,7 @@ func claim(ctx context.Context, tx *db.Tx, shard db.Shard) error {
 	case held.Count == 0 && !isUsed:
 		return tx.SetShard(ctx, shard)
 	case held.Count == 0:
-		return fmt.Errorf("the store holds records already, but not as %s: name a new store", shard)
+		return fmt.Errorf("the store holds records already, but not as %s: move it away, or name a new store", shard)
 	case shard.Count > 0:
 		return fmt.Errorf("the store is %s, not %s: each part of an archive needs a store of its own", held, shard)
 	case held.IsCombined():
@@ -75,6 +75,9 @@ func claimForStudy(ctx context.Context, tx *db.Tx, shard db.Shard) (isOther bool
 	held, ok, err := tx.Shard(ctx)
 	if err == nil && ok && held.IsCombined() && shard.Count == 0 {
 		return true, tx.SetShard(ctx, shard)
+	}
+	if err == nil && held.Count > 0 && shard.Count == 0 {
+		return false, fmt.Errorf("the store is %s: the study needs one of its own, name another in it", held)
 	}
 	return false, errors.Join(err, claim(ctx, tx, shard))
 }

@@ -336,5 +336,8 @@ func (w *writer) finish(ctx context.Context, err error) (Summary, error) {
 	for _, d := range standing {
 		w.opts.Doubted(d)
 	}
+	if errors.Is(err, db.ErrFull) && errors.Is(errFinish, db.ErrFull) {
+		errFinish = nil // it says the same again
+	}
 	return w.summary, errors.Join(err, errFinish)
 }

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"os"
 	"path/filepath"
 	"strings"
 
@@ -60,7 +61,7 @@ func newCombineOptions(c *cli.Context) (o combineOptions, err error) {
 	out := c.Args().First()
 	o.shards = c.Args().Tail()
 	for _, in := range o.shards {
-		if filepath.Clean(in) == filepath.Clean(out) {
+		if isSameFile(in, out) {
 			return o, usagef("%s is named as a shard and as what they are combined into", out)
 		}
 	}
@@ -68,6 +69,16 @@ func newCombineOptions(c *cli.Context) (o combineOptions, err error) {
 	o.ingest.pipeline = combineWith(pipelineOptions(out, o.ingest.monitor), o.ingest.monitor)
 	o.ingest.pipeline.Workers, o.ingest.pipeline.SkipRotation = c.Int("workers"), !c.Bool("rotation")
 	return o, nil
+}
+
+// isSameFile reports whether two names are of one file, by links too.
+func isSameFile(a, b string) bool {
+	if filepath.Clean(a) == filepath.Clean(b) {
+		return true
+	}
+	x, errX := os.Stat(a)
+	y, errY := os.Stat(b)
+	return errX == nil && errY == nil && os.SameFile(x, y)
 }
 
 // combineWith has the monitor show the stages of a combination.
@@ -141,9 +152,9 @@ func combine(ctx context.Context, store *db.Store, parts []*db.Part, o combineOp
 	o.ingest.monitor.end()
 	switch {
 	case err != nil && ctx.Err() != nil:
-		return interruption(done.Summary)
+		return interruption(done.Summary, done.Gathered)
 	case err != nil:
-		return err
+		return notCombined(o.ingest.store, err)
 	}
 	report := newCombineReport(o, parts, done)
 	if report.Refused, err = rejectedFiles(ctx, store); err != nil {
@@ -159,6 +170,14 @@ func combine(ctx context.Context, store *db.Store, parts []*db.Part, o combineOp
 		return errRejected
 	}
 	return nil
+}
+
+// notCombined says into what shards could not be combined, and what to do about it.
+func notCombined(store string, err error) error {
+	if errors.Is(err, db.ErrFull) {
+		return fmt.Errorf("combine into %s: %w; the same command goes on once there is room", store, err)
+	}
+	return fmt.Errorf("combine into %s: %w", store, err)
 }
 
 func approveAll(context.Context, int64, int64) (bool, error) { return true, nil }

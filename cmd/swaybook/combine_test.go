@@ -313,6 +313,19 @@ func TestCombineRefuses(t *testing.T) {
 	if text := combines(t, exitFailed, records, shards...); !strings.Contains(text, records+": it is a folder") {
 		t.Errorf("into a folder: %q", text)
 	}
+	if err := os.Link(shards[0], filepath.Join(dir, "hard.db")); err != nil {
+		t.Log(err)
+	} else {
+		if text := combines(t, exitUsage, filepath.Join(dir, "hard.db"), shards...); !strings.Contains(text, "is named as a shard") {
+			t.Errorf("into another name of a shard: %q", text)
+		}
+		if left, _ := filepath.Glob(filepath.Join(dir, "hard.db?*")); len(left) > 0 {
+			t.Errorf("left beside another name of a shard: %v", left)
+		}
+	}
+	if text := combines(t, exitFailed, whole, shards...); !strings.Contains(text, "combine into "+whole+": the store holds records") {
+		t.Errorf("into what was ingested: %q", text)
+	}
 	combines(t, exitUsage, out, out)
 	combines(t, exitUsage, out)
 	for _, args := range [][]string{ingest, append(ingest, "--shard", "1/2")} {

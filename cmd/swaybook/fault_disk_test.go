@@ -11,6 +11,8 @@ import (
 	"strings"
 	"syscall"
 	"testing"
+
+	"swaybook/db"
 )
 
 var allFaults = flag.Bool("faults", false, "try every limit and wait out every timeout in the tests of faults, for some minutes")
@@ -237,6 +239,9 @@ func (s *faultStudy) full(saved string, before, after outcome, run func(*faultSt
 		text, err := cmd.CombinedOutput()
 		removed := os.Remove(ballast)
 		s.t.Logf("%s: %s", what, lastLine(text))
+		if n := strings.Count(string(text), db.ErrFull.Error()); n > 1 {
+			s.t.Errorf("%s: said %d times: %s", what, n, text)
+		}
 		if err == nil {
 			done++
 			s.check(removed)

@@ -202,7 +202,7 @@ func fill(ctx context.Context, store *db.Store, o ingestOptions, w io.Writer) er
 	}
 	switch {
 	case err != nil && ctx.Err() != nil:
-		return interruption(summary)
+		return interruption(summary, db.Gathered{})
 	case err != nil:
 		return err
 	case summary.Damaged > 0:
@@ -213,9 +213,13 @@ func fill(ctx context.Context, store *db.Store, o ingestOptions, w io.Writer) er
 	return nil
 }
 
-// interruption says how far a run came that somebody stopped.
-func interruption(s pipeline.Summary) error {
+// interruption says how far a run came that somebody stopped, with what it had taken over of
+// shards.
+func interruption(s pipeline.Summary, g db.Gathered) error {
 	how := fmt.Sprintf("after %d files", s.Files)
+	if s.Files == 0 && g.Files+g.Computations > 0 {
+		how = fmt.Sprintf("after %d files and %d results were taken over", g.Files, g.Computations)
+	}
 	if s.Uncomputed > 0 {
 		done := s.Recomputed + s.NotRecomputed
 		how = fmt.Sprintf("while computing, %d of %d held components", done, done+s.Uncomputed)

@@ -93,6 +93,9 @@ func newReprocessOptions(c *cli.Context) (o reprocessOptions, err error) {
 	if o.combine = c.Int("combine"); c.IsSet("combine") && (o.combine < 1 || o.combine > maxShards) {
 		err = errors.Join(err, usagef("--combine %d: want 1 to %d", o.combine, maxShards))
 	}
+	if c.IsSet("combine") && o.rehash {
+		err = errors.Join(err, usagef("--rehash reads files again, of which --combine reads none: say it where the shards are filled"))
+	}
 	if c.IsSet("shard") && c.IsSet("combine") {
 		err = errors.Join(err, usagef("--shard fills one of the stores that --combine takes: give one of the two"))
 	}

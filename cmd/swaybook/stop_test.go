@@ -115,9 +115,16 @@ func TestInterruptionNamesTheStage(t *testing.T) {
 		"interrupted while computing, 3 of 9 held components; run the same command again to finish the rest": {Files: 7, Recomputed: 2, NotRecomputed: 1, Uncomputed: 6},
 		"interrupted while rotating, 4 of 10 records; run the same command again to finish the rest":         {Files: 7, Rotated: 2, NotRotated: 1, Damaged: 1, Unrotated: 6},
 	} {
-		if err := interruption(s); err.Error() != want || !errors.Is(err, errInterrupted) {
+		if err := interruption(s, db.Gathered{}); err.Error() != want || !errors.Is(err, errInterrupted) {
 			t.Errorf("interruption(%+v) = %v, want %s", s, err, want)
 		}
+	}
+	const want = "interrupted after 300 files and 900 results were taken over; run the same command again to finish the rest"
+	if err := interruption(pipeline.Summary{}, db.Gathered{Files: 300, Computations: 900}); err.Error() != want {
+		t.Errorf("interruption while shards were taken over: %v, want %s", err, want)
+	}
+	if err := interruption(pipeline.Summary{Files: 7}, db.Gathered{Files: 300}); !strings.Contains(err.Error(), "after 7 files;") {
+		t.Errorf("interruption behind that: %v", err)
 	}
 }
 

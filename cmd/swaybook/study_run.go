@@ -24,8 +24,11 @@ type studyRun struct {
 	plan    *studyPlan
 	options reprocessOptions
 	store   *db.Store
-	outputs *outputs
-	state   studyState
+	// gathered is what came from shards, and isNew says that the run made an edition.
+	gathered db.Gathered
+	isNew    bool
+	outputs  *outputs
+	state    studyState
 }
 
 // errHeld ends a run whose results are held back.
@@ -66,6 +69,9 @@ func (r *studyRun) write(w io.Writer) error {
 
 // run makes the store that of the study's files, and writes what it asks for.
 func (r *studyRun) run(ctx context.Context) (err error) {
+	if err := r.plan.checkShards(r.options.combine); err != nil { // before there is a store
+		return err
+	}
 	if r.store, err = db.Create(ctx, r.plan.study.Store.Value, db.AnySolver); err != nil {
 		return err
 	}
@@ -85,7 +91,7 @@ func (r *studyRun) run(ctx context.Context) (err error) {
 		return r.follow(ctx, done, before)
 	}
 	if ctx.Err() != nil {
-		err = interruption(done.Summary)
+		err = interruption(done.Summary, r.gathered)
 	}
 	if done.Published == done.Before {
 		err = errors.Join(err, r.outputs.set.Undo())
@@ -96,6 +102,7 @@ func (r *studyRun) run(ctx context.Context) (err error) {
 // note takes over what the run did.
 func (r *studyRun) note(done pipeline.Reprocessed, isWhole bool) {
 	s := &r.state
+	r.isNew = done.IsNew
 	s.Run, s.Edition, s.Published, s.Before = numbered(done.Run), numbered(done.Edition), numbered(done.Published), numbered(done.Before)
 	s.Unseen = newUnseenReport(done.Unseen)
 	if s.IsRead = done.IsRead; done.IsRead {

@@ -10,6 +10,7 @@ import (
 
 	"swaybook/db"
 	"swaybook/pipeline"
+	"swaybook/pipeline/cluster"
 )
 
 // shardStore is where a study's shard has its store: beside the study's own.
@@ -20,8 +21,8 @@ func shardStore(store string, s db.Shard) string {
 
 // ownShards are the stores of a study's shards, which are no records.
 func (p *studyPlan) ownShards(count int) {
-	for i := range count {
-		for name, what := range db.Files(shardStore(p.study.Store.Value, db.Shard{Number: i + 1, Count: count})) {
+	for _, path := range p.shardStores(count) {
+		for name, what := range db.Files(path) {
 			p.ingest.pipeline.Own[name] = what
 		}
 	}
@@ -39,9 +40,9 @@ func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w i
 		ingest.monitor.end()
 		switch {
 		case err != nil && ctx.Err() != nil:
-			return interruption(done.Summary)
+			return interruption(done.Summary, db.Gathered{})
 		case err != nil:
-			return err
+			return fmt.Errorf("fill %s: %w", ingest.store, err)
 		}
 		report := studyShardReport{ingestReport: newIngestReport(ingest, done.Summary, true), IsRead: done.IsRead}
 		if report.Refused, err = rejectedFiles(ctx, store); err != nil {
@@ -92,15 +93,42 @@ func (r *studyRun) make(ctx context.Context, opts pipeline.Options) (done pipeli
 	if r.options.combine == 0 {
 		return pipeline.Reprocess(ctx, r.store, opts, study)
 	}
-	var paths []string
-	for i := range r.options.combine {
-		paths = append(paths, shardStore(r.plan.study.Store.Value, db.Shard{Number: i + 1, Count: r.options.combine}))
-	}
-	parts, err := openParts(ctx, paths)
+	parts, err := openParts(ctx, r.plan.shardStores(r.options.combine))
 	if err != nil {
 		return done, err
 	}
 	defer func() { err = errors.Join(err, closeParts(parts)) }()
 	combined, err := pipeline.Combine(ctx, r.store, parts, combineWith(opts, r.plan.ingest.monitor), study)
+	if r.gathered = combined.Gathered; err != nil {
+		err = notCombined(r.store.Path(), err)
+	}
 	return combined.Reprocessed, err
+}
+
+// shardStores are where the stores of so many shards lie.
+func (p *studyPlan) shardStores(count int) (paths []string) {
+	for i := range count {
+		paths = append(paths, shardStore(p.study.Store.Value, db.Shard{Number: i + 1, Count: count}))
+	}
+	return paths
+}
+
+// missingShards are the numbers of those of so many shards of which there is no store.
+func (p *studyPlan) missingShards(count int) (missing []int) {
+	for i, path := range p.shardStores(count) {
+		if db.MustExist(path) != nil {
+			missing = append(missing, i+1)
+		}
+	}
+	return missing
+}
+
+// checkShards refuses to combine so many shards where some were never filled.
+func (p *studyPlan) checkShards(count int) error {
+	missing := p.missingShards(count)
+	if len(missing) == 0 {
+		return nil
+	}
+	return fmt.Errorf("shards that are missing of %d beside %s: %s; fill them: swaybook reprocess %s --shard I/%d",
+		count, p.study.Store.Value, numbers(missing), cluster.Quote(p.study.File), count)
 }

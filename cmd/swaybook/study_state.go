@@ -159,10 +159,16 @@ func (r *studyRun) print(p *printer) {
 		run = fmt.Sprintf(", run %d", *s.Run)
 	}
 	p.printf("%s%s, %.1f s\n", s.Study, run, s.Seconds)
-	if s.Ingest != nil {
+	switch {
+	case s.Ingest != nil:
 		s.Ingest.print(p.w, false)
-	} else if s.Run != nil {
+	case s.Run == nil, s.Outcome == outcomeFailed, s.Outcome == outcomeInterrupted:
+	case r.options.combine == 0:
 		p.printf("No file has changed since the last run.\n")
+	case r.isNew:
+		p.printf("Of the same files the shards have other results than in the last run.\n")
+	default:
+		p.printf("No shard has changed since the last run.\n")
 	}
 	s.Unseen.print(p)
 	if s.Changes != nil {
