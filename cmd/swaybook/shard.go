@@ -26,6 +26,7 @@ const (
 	slurmTask     = "SLURM_ARRAY_TASK_ID"
 	slurmCount    = "SLURM_ARRAY_TASK_COUNT"
 	slurmFirst    = "SLURM_ARRAY_TASK_MIN"
+	slurmLast     = "SLURM_ARRAY_TASK_MAX"
 	jobIndex      = "JOB_COMPLETION_INDEX"
 	countVariable = "SWAYBOOK_SHARDS"
 )
@@ -87,9 +88,14 @@ func taskShard(count int, getenv func(string) string) (db.Shard, error) {
 		return slurmShard(count, getenv)
 	case getenv(jobIndex) != "":
 		index, err := wholeNumber(getenv(jobIndex))
-		if err == nil && count == 0 {
+		switch {
+		case err != nil:
+			err = fmt.Errorf("%s: %w", jobIndex, err)
+		case count == 0 && getenv(countVariable) == "":
+			err = fmt.Errorf("of how many %s is one no variable says: say auto/N, or set %s", jobIndex, countVariable)
+		case count == 0:
 			if count, err = wholeNumber(getenv(countVariable)); err != nil {
-				err = fmt.Errorf("of how many %s is one no variable says: say auto/N, or set %s", jobIndex, countVariable)
+				err = fmt.Errorf("%s, of how many %s is one: %w", countVariable, jobIndex, err)
 			}
 		}
 		return db.Shard{Number: index + 1, Count: count}, err
@@ -97,24 +103,25 @@ func taskShard(count int, getenv func(string) string) (db.Shard, error) {
 	return db.Shard{}, fmt.Errorf("neither %s nor %s is set: this is no task of an array", slurmTask, jobIndex)
 }
 
-// slurmShard is the part of a task of an array 1-N, or 0-(N-1) where the whole array is at
+// slurmShard is the part of a task of an array 1-N, or 0-(N-1), where the whole array is at
 // work. Where some tasks of one are submitted again, Slurm counts these only, so the count
-// has to be said.
+// has to be said. Of an array with steps it says the numbers of the first and the last task.
 func slurmShard(count int, getenv func(string) string) (s db.Shard, err error) {
-	task, err := wholeNumber(getenv(slurmTask))
-	if err != nil || count != 0 {
-		return db.Shard{Number: task, Count: count}, err
+	var task, first, last int
+	for _, v := range []struct {
+		name  string
+		value *int
+	}{{slurmTask, &task}, {slurmCount, &s.Count}, {slurmFirst, &first}, {slurmLast, &last}} {
+		if *v.value, err = wholeNumber(getenv(v.name)); err != nil {
+			return s, fmt.Errorf("%s: %w", v.name, err)
+		}
+		if count != 0 {
+			return db.Shard{Number: task, Count: count}, nil
+		}
 	}
-	if s.Count, err = wholeNumber(getenv(slurmCount)); err != nil {
-		return s, fmt.Errorf("%s: %w", slurmCount, err)
-	}
-	first, err := wholeNumber(getenv(slurmFirst))
-	if err != nil {
-		return s, fmt.Errorf("%s: %w", slurmFirst, err)
+	if first < 0 || first > 1 || last-first+1 != s.Count {
+		return s, fmt.Errorf("tasks %d to %d, %d of them, are no array 1-N or 0-(N-1), or a few that were submitted again: say auto/N", first, last, s.Count)
 	}
 	s.Number = task - first + 1
-	if first > 1 || s.Number > s.Count {
-		return s, fmt.Errorf("task %d looks like one of a few that were submitted again: say auto/N", task)
-	}
 	return s, nil
 }
