@@ -151,7 +151,7 @@ func cause(err error) error {
 
 // Read returns the content of the file and its description as of the reading.
 // Files beyond MaxFileSize are refused. An error is a *ParseError with its Path
-// set.
+// set, or, of a database beyond that, as stores come to be, a *NotMotionError.
 func Read(file string) ([]byte, fs.FileInfo, error) { return readLimited(file, MaxFileSize) }
 
 func readLimited(file string, limit int64) ([]byte, fs.FileInfo, error) {
@@ -168,6 +168,10 @@ func readLimited(file string, limit int64) ([]byte, fs.FileInfo, error) {
 		return nil, nil, &ParseError{Path: file, Err: errors.New("not a regular file")}
 	}
 	if info.Size() > limit {
+		head := make([]byte, len(DatabaseMark))
+		if _, err := io.ReadFull(f, head); err == nil && string(head) == DatabaseMark {
+			return nil, nil, errDatabase
+		}
 		return nil, nil, &ParseError{Path: file, Err: fmt.Errorf("file of %d bytes is larger than the limit of %d", info.Size(), limit)}
 	}
 	data := make([]byte, info.Size()+1) // room to notice that the file grows

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"bytes"
 	"context"
 	"errors"
 	"fmt"
@@ -206,6 +207,8 @@ func recognise(c *Content, textErr error, layouts Layouts) (Format, error) {
 		return match[0], nil
 	case len(match) > 1:
 		return nil, refuse(0, "", "file looks like more than one format: %s", strings.Join(saw, ", "))
+	case bytes.HasPrefix(c.Data, []byte(DatabaseMark)):
+		return nil, errDatabase
 	case textErr != nil:
 		return nil, textErr
 	}

@@ -29,6 +29,12 @@ func notMotion(t *Text) error {
 	return nil
 }
 
+// DatabaseMark begins every SQLite database (SQLite's file format, 1.3), of which stores are.
+const DatabaseMark = "SQLite format 3\x00"
+
+// errDatabase says so.
+var errDatabase = &NotMotionError{"a database, not a record"}
+
 // isHTML looks for the tags that open a page in the first lines from line on.
 func isHTML(t *Text, line int) bool {
 	for n := line; n < line+5; n++ {

@@ -2,6 +2,8 @@ package ingest
 
 import (
 	"errors"
+	"os"
+	"path/filepath"
 	"testing"
 )
 
@@ -36,6 +38,25 @@ func TestNotMotion(t *testing.T) {
 		if _, skip := errors.AsType[*NotMotionError](err); skip != (k.skip != "") || (err == nil) != (want == "") || err != nil && err.Error() != want {
 			t.Errorf("%s: %v, want %q", k.name, err, want)
 		}
+	}
+}
+
+// A database is none, however large, and is not read to its end to see that.
+func TestADatabaseIsNoRecord(t *testing.T) {
+	data := []byte(DatabaseMark + "\x10\x00\x01\x01 and more")
+	format, _, err := Parse(t.Context(), "store.db", data, Hints{})
+	if skip, ok := errors.AsType[*NotMotionError](err); !ok || skip.Reason != "a database, not a record" || format != "" {
+		t.Errorf("Parse = %q, %v", format, err)
+	}
+	file := filepath.Join(t.TempDir(), "store.db")
+	if err := os.WriteFile(file, data, 0o666); err != nil {
+		t.Fatal(err)
+	}
+	if _, _, err := readLimited(file, int64(len(data))-1); !errors.Is(err, errDatabase) {
+		t.Errorf("read beyond the limit: %v", err)
+	}
+	if got, _, err := readLimited(file, int64(len(data))); string(got) != string(data) || err != nil {
+		t.Errorf("read up to the limit: %q, %v", got, err)
 	}
 }
 

@@ -100,6 +100,9 @@ func (r *reader) make(ctx context.Context, file item, res result) (result, error
 		return res.skipped(file.skip), nil
 	}
 	data, err := r.read(file, &res)
+	if skip, ok := errors.AsType[*ingest.NotMotionError](err); ok {
+		return res.skipped(skip.Reason), nil
+	}
 	if err != nil {
 		return res.rejected(err), nil
 	}

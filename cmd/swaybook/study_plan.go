@@ -1,7 +1,6 @@
 package main
 
 import (
-	"bytes"
 	"context"
 	"errors"
 	"fmt"
@@ -173,7 +172,7 @@ func (p *planner) store() {
 	if store.Value == "" {
 		return
 	}
-	head, err := readWhole(store.Value, int64(len(sqliteMark)))
+	head, err := readWhole(store.Value, int64(len(ingest.DatabaseMark)))
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
 		p.plan.isNew = true
@@ -184,13 +183,10 @@ func (p *planner) store() {
 		}
 	case err != nil:
 		p.fail(store.Line, "store", err)
-	case len(head) > 0 && !bytes.Equal(head, []byte(sqliteMark)):
+	case len(head) > 0 && string(head) != ingest.DatabaseMark:
 		p.fail(store.Line, "store", usagef("%s is there, and is no SQLite database", p.plan.study.Short(store.Value)))
 	}
 }
-
-// sqliteMark begins every database (SQLite's file format, 1.3).
-const sqliteMark = "SQLite format 3\x00"
 
 // ingest has the ingest command read its flags.
 func (p *planner) ingest() {
