@@ -55,7 +55,7 @@ func reprocessCommand() *cli.Command {
 				return err
 			}
 			if c.Bool("check") {
-				return plan.print(c.App.Writer, o.json)
+				return plan.print(c.App.Writer, o)
 			}
 			plan.ingest.pipeline.Workers = c.Int("workers")
 			if err = reprocess(c, plan, o); c.Bool("allow-rejected") && isRejectedOnly(err) {

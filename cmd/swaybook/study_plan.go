@@ -111,7 +111,9 @@ func readStudyPlan(c *cli.Context, file string) (*studyPlan, error) {
 	if p.plan.study != nil {
 		p.store()
 		p.ingest()
-		p.sources()
+		if !c.IsSet("combine") { // which reads none of their files
+			p.sources()
+		}
 		p.outputs()
 		p.selections()
 		p.products()

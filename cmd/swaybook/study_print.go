@@ -6,6 +6,7 @@ import (
 	"strings"
 	"text/tabwriter"
 
+	"swaybook/db"
 	"swaybook/pipeline/cluster"
 	"swaybook/pipeline/study"
 )
@@ -18,6 +19,8 @@ type planReport struct {
 		Path  string `json:"path"`
 		IsNew bool   `json:"is_new"`
 	} `json:"store"`
+	Shard   *shardPlan     `json:"shard"`   // to be filled, null for none
+	Combine []shardPlan    `json:"combine"` // empty for none
 	Sources []sourceReport `json:"sources"`
 	Include []string       `json:"include"`
 	Exclude []string       `json:"exclude"`
@@ -38,6 +41,14 @@ type planReport struct {
 	Metrics    *string           `json:"metrics"`
 	Selections []selectionReport `json:"selections"`
 	Products   []productReport   `json:"products"`
+}
+
+// shardPlan is the store of a shard; one that is new was never filled.
+type shardPlan struct {
+	Number int    `json:"shard"`
+	Count  int    `json:"count"`
+	Path   string `json:"path"`
+	IsNew  bool   `json:"is_new"`
 }
 
 type sourceReport struct {
@@ -71,7 +82,7 @@ type fileReport struct {
 	Format study.Format `json:"format"`
 }
 
-func (p *studyPlan) report() planReport {
+func (p *studyPlan) report(o reprocessOptions) planReport {
 	s := p.study
 	r := planReport{
 		Name: s.Name.Value, Study: s.Path(), Sources: []sourceReport{}, Include: patternTexts(s.Include), Exclude: patternTexts(s.Exclude),
@@ -79,6 +90,14 @@ func (p *studyPlan) report() planReport {
 		Selections: []selectionReport{}, Products: []productReport{},
 	}
 	r.Store.Path, r.Store.IsNew = s.Store.Value, p.isNew
+	r.Combine = []shardPlan{}
+	for i := range o.combine {
+		r.Combine = append(r.Combine, p.shard(db.Shard{Number: i + 1, Count: o.combine}))
+	}
+	if o.shard.Count > 0 {
+		one := p.shard(o.shard)
+		r.Shard = &one
+	}
 	r.Recipe.Name, r.Recipe.Hash = p.ingest.pipeline.Recipe.Name, p.ingest.pipeline.Recipe.Hash()
 	grid := p.ingest.pipeline.Grid
 	r.Grid.PeriodsS, r.Grid.Dampings = append([]float64{}, grid.PeriodsS...), append([]float64{}, grid.Dampings...)
@@ -108,6 +127,12 @@ func (p *studyPlan) report() planReport {
 	return r
 }
 
+// shard says where a shard lies, and whether it was filled.
+func (p *studyPlan) shard(s db.Shard) shardPlan {
+	path := shardStore(p.study.Store.Value, s)
+	return shardPlan{s.Number, s.Count, path, db.MustExist(path) != nil}
+}
+
 func given(t study.Text) *string {
 	if t.Value == "" {
 		return nil
@@ -132,9 +157,9 @@ func settingReports(settings []study.Setting) []settingReport {
 }
 
 // print writes the plan. Paths for people are relative to the study's folder.
-func (p *studyPlan) print(w io.Writer, asJSON bool) error {
-	r := p.report()
-	if asJSON {
+func (p *studyPlan) print(w io.Writer, o reprocessOptions) error {
+	r := p.report(o)
+	if o.json {
 		return writeJSON(w, r)
 	}
 	table := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
@@ -154,11 +179,9 @@ func (p *studyPlan) print(w io.Writer, asJSON bool) error {
 // printWayIn writes what fills the store.
 func (p *studyPlan) printWayIn(out *printer, r *planReport) {
 	short := p.study.Short
-	state := "is there"
-	if r.Store.IsNew {
-		state = "new"
-	}
+	state := newOrThere(r.Store.IsNew)
 	out.printf("store\t%s, %s\n", short(r.Store.Path), state)
+	p.printShards(out, r)
 	for i, s := range r.Sources {
 		out.printf("%s\t%s, %s\n", titleOnce(i, "sources"), short(s.Path), sourceWords(s))
 	}
@@ -189,6 +212,26 @@ func (p *studyPlan) printWayIn(out *printer, r *planReport) {
 			out.printf("%s\t%s\n", one.title, short(*one.path))
 		}
 	}
+}
+
+// printShards writes which shard is to be filled, or which are to be combined.
+func (p *studyPlan) printShards(out *printer, r *planReport) {
+	if s := r.Shard; s != nil {
+		out.printf("fill\t%s, %s, %s\n", db.Shard{Number: s.Number, Count: s.Count}, p.study.Short(s.Path), newOrThere(s.IsNew))
+	}
+	if n := len(r.Combine); n > 0 {
+		out.printf("combine\t%s to %d of %d\n", p.study.Short(r.Combine[0].Path), n, n)
+		if missing := p.missingShards(n); len(missing) > 0 {
+			out.printf("missing\tshards %s\n", numbers(missing))
+		}
+	}
+}
+
+func newOrThere(isNew bool) string {
+	if isNew {
+		return "new"
+	}
+	return "is there"
 }
 
 func titleOnce(i int, title string) string {
