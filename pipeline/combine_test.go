@@ -110,6 +110,9 @@ func TestDamagedShards(t *testing.T) {
 	whole := newStore(t)
 	run(t, whole, opts)
 	want := dump(t, whole)
+	other := t.TempDir() // of which nothing was computed that the shard has
+	put(t, other, "EV1_ST50000.AT2", at2("Invented", "Site 50", "000", 500))
+	former := shardsOf(t, 1, options(other))
 	for _, c := range []struct{ damage, says string }{
 		{`UPDATE spectrum SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT max(id) FROM spectrum)`, ""},
 		{`UPDATE spectrum SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT min(id) FROM spectrum)`, ""},
@@ -122,10 +125,18 @@ func TestDamagedShards(t *testing.T) {
 		shards := shardsOf(t, 1, opts)
 		execute(t, shards[0], c.damage)
 		store := newStore(t)
+		if _, err := combineInto(t.Context(), t, store, former, opts); err != nil {
+			t.Fatal(err)
+		}
+		before := dump(t, store)
+		var done Combination
 		part, err := db.OpenPart(t.Context(), shards[0])
 		if err == nil {
 			part.Close()
-			_, err = combineInto(t.Context(), t, store, shards, opts)
+			done, err = combineInto(t.Context(), t, store, shards, opts)
+		}
+		if c.says != "" && !slices.Equal(dump(t, store), before) {
+			t.Errorf("%s: what was combined before has changed", c.damage)
 		}
 		switch {
 		case c.says != "" && (err == nil || !strings.Contains(err.Error(), c.says) || !strings.Contains(err.Error(), shards[0])):
@@ -135,6 +146,9 @@ func TestDamagedShards(t *testing.T) {
 		case c.says == "":
 			if got := dump(t, store); !slices.Equal(got, want) {
 				t.Errorf("%s: another result", c.damage)
+			}
+			if done.Gathered.Damaged != 1 {
+				t.Errorf("%s: %d damaged results, want 1", c.damage, done.Gathered.Damaged)
 			}
 		}
 	}
