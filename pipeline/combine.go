@@ -36,7 +36,7 @@ type Combination struct {
 // as they were. A run that was stopped is gone on with; nothing is published before the end.
 func Combine(ctx context.Context, store Combined, parts []*db.Part, opts Options, study Study) (Combination, error) {
 	opts = withDefaults(opts)
-	c := &combining{store: store, parts: slices.SortedFunc(slices.Values(parts), func(a, b *db.Part) int { return cmp.Compare(a.Number, b.Number) })}
+	c := &combining{store: store, parts: sorted(parts)}
 	c.study = study
 	err := errors.Join(c.check(), c.checkStudy(opts))
 	if err == nil {
@@ -68,6 +68,10 @@ func Combine(ctx context.Context, store Combined, parts []*db.Part, opts Options
 		}
 	}
 	return out, errors.Join(err, errPresent)
+}
+
+func sorted(parts []*db.Part) []*db.Part {
+	return slices.SortedFunc(slices.Values(parts), func(a, b *db.Part) int { return cmp.Compare(a.Number, b.Number) })
 }
 
 // combining is a run that combines shards.

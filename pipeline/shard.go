@@ -69,6 +69,11 @@ func claim(ctx context.Context, tx *db.Tx, shard db.Shard) error {
 	return fmt.Errorf("the store is %s: say --shard %d/%d, or name another store with --store", held, held.Number, held.Count)
 }
 
+// CheckParts says what keeps parts from being combined, into whatever store.
+func CheckParts(parts []*db.Part) error {
+	return (&combining{parts: sorted(parts)}).check()
+}
+
 // claimForStudy does so for a study, whose store may come back from shards that were combined
 // to the files themselves; isOther says that it does, and that they have to be read.
 func claimForStudy(ctx context.Context, tx *db.Tx, shard db.Shard) (isOther bool, err error) {
