@@ -3,6 +3,7 @@ package query
 import (
 	"errors"
 	"fmt"
+	"slices"
 	"strings"
 	"testing"
 
@@ -132,6 +133,19 @@ func TestQualityInExpressions(t *testing.T) {
 	list, err := RecordsQuestion{Selection: Selection{Where: `quality.drift`, Component: ComponentRotD50}}.Ask(t.Context(), store)
 	if err != nil || len(list.Rows) != 1 || list.Rows[0].Record != "R_drift" || list.Rows[0].Quality[0].Flag != "drift" || list.Rows[0].qualityWords() != "drift: invented" {
 		t.Errorf("of a pair: %+v, %v", list, err)
+	}
+}
+
+// What was found keeps its value apart from its bound, whatever lists it.
+func TestRowsOfFindings(t *testing.T) {
+	c := &db.HeldComponent{Component: db.Component{Findings: []db.Finding{{Flag: "drift", Value: 0.3, Bound: 0.25, Words: "drifts"}}}}
+	c.Conditioning = &db.Conditioning{Findings: []db.Finding{{Flag: "early_end", Value: 0.02, Bound: 0.01, Words: "ends early"}}}
+	want := []FindingRow{
+		{Flag: "drift", Of: ofDelivered, Value: 0.3, Bound: 0.25, Words: "drifts"},
+		{Flag: "early_end", Of: ofConditioned, Value: 0.02, Bound: 0.01, Words: "ends early"},
+	}
+	if got := findingRows(c); !slices.Equal(got, want) {
+		t.Errorf("%+v, want %+v", got, want)
 	}
 }
 
