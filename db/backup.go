@@ -58,7 +58,7 @@ func backup(ctx context.Context, path, file string, replace bool) (int64, error)
 // refuseTarget returns why the copy may not have this name.
 func refuseTarget(path, file string, replace bool) error {
 	for own, what := range Files(path) {
-		if isSame(own, file) {
+		if IsSameFile(own, file) {
 			return fmt.Errorf("that is %s", what)
 		}
 	}
@@ -82,8 +82,8 @@ func refuseTarget(path, file string, replace bool) error {
 	return nil
 }
 
-// isSame reports whether two paths name one file, which need not be there.
-func isSame(a, b string) bool {
+// IsSameFile reports whether two paths name one file, which need not be there.
+func IsSameFile(a, b string) bool {
 	infoA, errA := os.Stat(a)
 	infoB, errB := os.Stat(b)
 	if errA == nil && errB == nil {

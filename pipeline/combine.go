@@ -197,7 +197,11 @@ func (c *combining) claim(ctx context.Context, tx *db.Tx) error {
 		return err
 	}
 	if of := (db.Shard{Count: c.count()}); held != of {
-		if err := errors.Join(c.checkStore(ctx, tx, held), tx.SetShard(ctx, of)); err != nil {
+		err := c.checkStore(ctx, tx, held)
+		if err == nil {
+			err = tx.SetShard(ctx, of)
+		}
+		if err != nil {
 			return err
 		}
 	}

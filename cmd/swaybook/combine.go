@@ -5,8 +5,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"os"
-	"path/filepath"
 	"strings"
 
 	"github.com/urfave/cli/v2"
@@ -61,7 +59,7 @@ func newCombineOptions(c *cli.Context) (o combineOptions, err error) {
 	out := c.Args().First()
 	o.shards = c.Args().Tail()
 	for _, in := range o.shards {
-		if isSameFile(in, out) {
+		if db.IsSameFile(in, out) {
 			return o, usagef("%s is named as a shard and as what they are combined into", out)
 		}
 	}
@@ -69,16 +67,6 @@ func newCombineOptions(c *cli.Context) (o combineOptions, err error) {
 	o.ingest.pipeline = combineWith(pipelineOptions(out, o.ingest.monitor), o.ingest.monitor)
 	o.ingest.pipeline.Workers, o.ingest.pipeline.SkipRotation = c.Int("workers"), !c.Bool("rotation")
 	return o, nil
-}
-
-// isSameFile reports whether two names are of one file, by links too.
-func isSameFile(a, b string) bool {
-	if filepath.Clean(a) == filepath.Clean(b) {
-		return true
-	}
-	x, errX := os.Stat(a)
-	y, errY := os.Stat(b)
-	return errX == nil && errY == nil && os.SameFile(x, y)
 }
 
 // combineWith has the monitor show the stages of a combination.

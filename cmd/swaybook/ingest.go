@@ -115,7 +115,9 @@ func (o *ingestOptions) describe(c *cli.Context) error {
 	p.Grid, wrong[3] = ingestGrid(c)
 	wrong[4] = o.readRecipe(c.String("recipe"))
 	wrong[5] = o.readCatalogue(c.String("catalogue"))
-	p.Decided = decidedByFlags(c)
+	if p.Shard.Count > 0 {
+		p.Decided = decidedByFlags(c)
+	}
 	return errors.Join(wrong[0], ofFlag("metadata", wrong[1]), ofFlag("layout", wrong[2]), wrong[3],
 		ofFlag("recipe", wrong[4]), ofFlag("catalogue", wrong[5]))
 }

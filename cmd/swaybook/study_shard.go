@@ -33,7 +33,7 @@ func (p *studyPlan) ownShards(count int) {
 func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) error {
 	ingest := plan.ingest
 	ingest.store = shardStore(plan.study.Store.Value, o.shard)
-	ingest.pipeline.Shard, ingest.pipeline.Takes = o.shard, plan.study.Takes
+	ingest.pipeline.Shard, ingest.pipeline.Takes, ingest.pipeline.Decided = o.shard, plan.study.Takes, plan.decided
 	plan.ownShards(o.shard.Count)
 	return lockedAt(ctx, ingest.store, ingest.pipeline.Started, db.AnySolver, func(store *db.Store) error {
 		done, err := pipeline.Reprocess(ctx, store, ingest.pipeline, plan.followed(o, approveAll))
