@@ -35,9 +35,10 @@ func Digest(ctx context.Context, path string) (digest string, err error) {
 }
 
 // Digest is the digest of what the snapshot shows, as of what is published the function Digest.
-// What all results share is written first, then the records in the order of their digests.
+// What all results share is written first, then the records in the order of their digests. It
+// is of the rows, whatever is laid out of them.
 func (s *Snapshot) Digest(ctx context.Context) (string, error) {
-	d := &digester{snapshot: s, records: map[int64]*digestedRecord{}}
+	d := &digester{snapshot: s.ofRows(), records: map[int64]*digestedRecord{}}
 	for _, read := range []func(context.Context) error{d.components, d.computed, d.measures, d.statements} {
 		if err := read(ctx); err != nil {
 			return "", fmt.Errorf("make digest: %w", err)

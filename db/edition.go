@@ -83,12 +83,15 @@ func (t *Tx) PutEdition(ctx context.Context, runID, generationID int64) (isNew b
 		isNew = isNew || changed
 	}
 	if !isNew {
-		return false, nil
+		return false, t.layOut(ctx, 0)
 	}
 	if err := t.exec(ctx, `INSERT INTO edition (id, generation_id, state) VALUES (?, ?, ?)`, runID, generationID, EditionHeld); err != nil {
 		return false, fmt.Errorf("make edition: %w", err)
 	}
-	return true, t.sealEdition(ctx, runID)
+	if err := t.sealEdition(ctx, runID); err != nil {
+		return false, err
+	}
+	return true, t.layOut(ctx, runID)
 }
 
 // show ends the rows of the newest edition that are no longer those of the table, and
@@ -140,7 +143,7 @@ func (t *Tx) Publish(ctx context.Context, id int64) error {
 	if err != nil {
 		return fmt.Errorf("publish edition: %w", err)
 	}
-	return nil
+	return t.layOut(ctx, 0)
 }
 
 // NewestEdition returns the edition of the last run that made one; ok is false where there

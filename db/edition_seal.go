@@ -190,7 +190,8 @@ func (s *Snapshot) unread(name string, err error) error {
 	return damage(s.Edition.ID, name, err.Error())
 }
 
-// sealed takes the seals of the snapshot's edition, against which it is read from then on.
+// sealed takes the seals of the snapshot's edition, against which it is read from then on, as
+// is what is laid out of it.
 func (s *Snapshot) sealed(ctx context.Context) (err error) {
 	if s.seals, err = sealsOf(ctx, s.tx, s.Edition.ID); err != nil {
 		return err
@@ -206,6 +207,9 @@ func (s *Snapshot) sealed(ctx context.Context) (err error) {
 		(SELECT json_group_array(edition_id) FROM (SELECT edition_id FROM edition_seal WHERE name = '`+sealedGeneration+`' ORDER BY edition_id))`).Scan(&editions, &seals)
 	if err == nil && editions != seals {
 		err = fmt.Errorf("%w: editions %s, of which %s have checksums", ErrAltered, editions, seals)
+	}
+	if err == nil {
+		s.isLaidOut, err = isLaidOut(ctx, s.tx, s.Edition.ID)
 	}
 	return err
 }

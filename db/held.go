@@ -4,10 +4,7 @@ import (
 	"context"
 	"database/sql"
 	"encoding/json"
-	"errors"
-	"fmt"
 	"math"
-	"strings"
 )
 
 // HeldComponent is a stored component with what is known of its record.
@@ -70,7 +67,7 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 	condition := ""
 	var args []any
 	if sha256 != "" {
-		condition = ` WHERE c.source_id = (SELECT id FROM ` + s.shown("source_file") + ` WHERE sha256 = ?)`
+		condition = ` WHERE x.source_id = (SELECT id FROM ` + s.shown("source_file") + ` WHERE sha256 = ?)`
 		args = append(args, sha256)
 	}
 	records, err := s.records(ctx, details, condition, args)
@@ -83,55 +80,35 @@ func (s *Snapshot) selectComponents(ctx context.Context, details Details, sha256
 			return nil, err
 		}
 	}
-	var n int
-	if err := s.tx.QueryRowContext(ctx, `SELECT count(*) FROM `+s.shown("component")+` c`+condition, args...).Scan(&n); err != nil {
-		return nil, fmt.Errorf("count components: %w", err)
-	}
 	beside, err := s.besideComponents(ctx, details)
 	if err != nil {
 		return nil, err
 	}
-	rows, err := s.tx.QueryContext(ctx, s.componentQuery(details)+condition+` ORDER BY r.code, c.role`, args...)
-	if err != nil {
-		return nil, fmt.Errorf("read components: %w", err)
-	}
-	defer rows.Close()
 	var v componentRow
-	columns, into := v.columns(details)
-	seen, peaks := s.tally("component", "", ofTable(columns)...), s.attribution(sealedPeaks, componentRole)
-	out := make([]HeldComponent, 0, n)
+	w := wanted{name: "component", condition: condition, args: args}
+	w.columns, w.into = v.columns(details)
+	out := make([]HeldComponent, 0, s.seals[sealKey{name: "component"}].rows)
 	versions := false
-	for rows.Next() {
-		v = componentRow{}
-		if err := rows.Scan(into...); err != nil {
-			return nil, s.unread("component", err)
-		}
-		seen.add(into)
+	err = s.scan(ctx, w, func() (err error) {
 		versions = versions || v.motion.Valid
-		of := roleOf{v.RecordID, v.Role}
 		v.Record = records[v.RecordID]
 		f := files[v.SourceID]
 		v.SourcePath, v.SourceSHA256, v.SourceFormat = f.path, f.sha256, f.format
-		v.Findings, v.Conditioning, v.Measures = beside.findings[v.ID], beside.conditioned[of], beside.measures[of]
-		if details&DetailPeaks != 0 {
-			v.Peaks = v.peaks(peaks)
-		}
+		beside.describe(&v.HeldComponent)
 		if v.Start, err = parseTime(v.start); err != nil {
-			return nil, s.unread("component", err)
+			return err
 		}
+		v.Warnings = nil
 		if v.warnings != "" {
 			if err := json.Unmarshal([]byte(v.warnings), &v.Warnings); err != nil {
-				return nil, s.unread("component", err)
+				return err
 			}
 		}
 		out = append(out, v.HeldComponent)
-	}
-	err = errors.Join(rows.Err(), seen.check())
-	if err == nil && details&DetailPeaks != 0 {
-		err = peaks.check()
-	}
+		return nil
+	})
 	if err != nil {
-		return nil, s.unread("component", err)
+		return nil, err
 	}
 	s.hasVersions = &versions
 	return out, nil
@@ -142,22 +119,6 @@ type componentRow struct {
 	HeldComponent
 	start, warnings string
 	motion          sql.NullInt64
-	computation     sql.NullInt64
-	pga, pgv, pgd   sql.NullFloat64
-}
-
-// peaks are the component's, NaN for one that is not there.
-func (v *componentRow) peaks(seen *attribution) Peaks {
-	of := roleOf{v.RecordID, v.Role}
-	for _, m := range []struct {
-		name  string
-		value *sql.NullFloat64
-	}{{MeasurePGA, &v.pga}, {MeasurePGV, &v.pgv}, {MeasurePGD, &v.pgd}} {
-		if m.value.Valid {
-			seen.measure(of, v.computation.Int64, m.name, m.value.Float64)
-		}
-	}
-	return Peaks{orNaN(v.pga), orNaN(v.pgv), orNaN(v.pgd)}
 }
 
 func orNaN(x sql.NullFloat64) float64 {
@@ -167,52 +128,23 @@ func orNaN(x sql.NullFloat64) float64 {
 	return x.Float64
 }
 
-// columns are what is read of a component, as SQL says it, and where it goes.
+// columns are what is read of a component, and where it goes.
 func (v *componentRow) columns(d Details) (names []string, into []any) {
-	names, into = words(`c.id c.record_id c.role c.motion_id`), []any{&v.ID, &v.RecordID, &v.Role, &v.motion}
+	names, into = words(`id record_id role motion_id`), []any{&v.ID, &v.RecordID, &v.Role, &v.motion}
 	if d&DetailMotion != 0 {
-		names = append(names, words(`c.axis c.azimuth_deg c.step_s c.samples coalesce(c.start_at,'')`)...)
+		names = append(names, words(`axis azimuth_deg step_s samples start_at`)...)
 		into = append(into, &v.Axis, &v.AzimuthDeg, &v.StepS, &v.Samples, &v.start)
 	}
 	if d&DetailBand != 0 {
-		names = append(names, words(`c.step_s c.low_cut_hz c.high_cut_hz`)...)
+		names = append(names, words(`step_s low_cut_hz high_cut_hz`)...)
 		into = append(into, &v.StepS, &v.LowCutHz, &v.HighCutHz)
 	}
-	if d&DetailPeaks != 0 {
-		names = append(names, words(`k.computation_id pga.value pgv.value pgd.value`)...)
-		into = append(into, &v.computation, &v.pga, &v.pgv, &v.pgd)
-	}
 	if d&DetailChannel != 0 {
-		names = append(names, words(`c.label c.rank c.channel c.samples c.unit c.processing c.low_cut_hz c.high_cut_hz c.header_peak_m_s2 c.warnings c.source_id c.source_line`)...)
+		names = append(names, words(`label rank channel samples unit processing low_cut_hz high_cut_hz header_peak_m_s2 warnings source_id source_line`)...)
 		into = append(into, &v.Label, &v.Rank, &v.Channel, &v.Samples, &v.Unit, &v.Processing,
 			&v.LowCutHz, &v.HighCutHz, &v.HeaderPeak, &v.warnings, &v.SourceID, &v.SourceLine)
 	}
 	return names, into
-}
-
-// ofTable are the columns of the table itself among those of a query, "" for others.
-func ofTable(columns []string) []string {
-	out := make([]string, len(columns))
-	for i, text := range columns {
-		text = strings.TrimSuffix(strings.TrimPrefix(text, "coalesce("), ",'')")
-		if name, ok := strings.CutPrefix(text, "c."); ok {
-			out[i] = name
-		}
-	}
-	return out
-}
-
-// componentQuery is the query up to its condition, without parameters.
-func (s *Snapshot) componentQuery(d Details) string {
-	names, _ := new(componentRow).columns(d)
-	text := `SELECT ` + strings.Join(names, ", ") + ` FROM ` + s.shown("component") + ` c JOIN ` + s.shown("record") + ` r ON r.id = c.record_id`
-	if d&DetailPeaks != 0 {
-		text += ` LEFT JOIN ` + s.shown("computed") + ` k ON k.record_id = c.record_id AND k.role = c.role`
-		for _, m := range [][2]string{{"pga", MeasurePGA}, {"pgv", MeasurePGV}, {"pgd", MeasurePGD}} {
-			text += fmt.Sprintf(` LEFT JOIN measure %[1]s ON %[1]s.computation_id = k.computation_id AND %[1]s.name = '%[2]s'`, m[0], m[1])
-		}
-	}
-	return text
 }
 
 // sourceFile is what is read of a file with its components.
@@ -223,24 +155,16 @@ func (s *Snapshot) files(ctx context.Context, condition string, args []any) (map
 	if condition != "" {
 		condition = ` WHERE sha256 = ?`
 	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, path, sha256, format FROM `+s.shown("source_file")+condition, args...)
-	if err != nil {
-		return nil, fmt.Errorf("read files: %w", err)
-	}
-	type row struct {
-		id int64
-		sourceFile
-	}
-	seen := s.tally("source_file", "", "id", "path", "sha256", "format")
-	found, err := collectSeen(rows, seen, func(v *row) []any { return []any{&v.id, &v.path, &v.sha256, &v.format} })
-	if err != nil {
-		return nil, s.unread("source_file", err)
-	}
-	out := make(map[int64]sourceFile, len(found))
-	for _, v := range found {
-		out[v.id] = v.sourceFile
-	}
-	return out, nil
+	var id int64
+	var v sourceFile
+	out := map[int64]sourceFile{}
+	err := s.scan(ctx, wanted{
+		name: "source_file", columns: words(`id path sha256 format`), into: []any{&id, &v.path, &v.sha256, &v.format}, condition: condition, args: args,
+	}, func() error {
+		out[id] = v
+		return nil
+	})
+	return out, err
 }
 
 // records reads the records, by id, of the components that meet the condition.
@@ -249,7 +173,7 @@ func (s *Snapshot) records(ctx context.Context, d Details, condition string, arg
 		if condition == "" {
 			return ""
 		}
-		return ` WHERE id IN (SELECT ` + id + ` FROM ` + s.shown("record") + ` r JOIN ` + s.shown("component") + ` c ON c.record_id = r.id` + condition + `)`
+		return ` WHERE id IN (SELECT ` + id + ` FROM ` + s.shown("record") + ` r JOIN ` + s.shown("component") + ` x ON x.record_id = r.id` + condition + `)`
 	}
 	events, err := s.events(ctx, where("r.event_id"), args)
 	if err != nil {
@@ -262,29 +186,18 @@ func (s *Snapshot) records(ctx context.Context, d Details, condition string, arg
 		}
 	}
 	var v recordRow
-	names, into := v.columns(d)
-	rows, err := s.tx.QueryContext(ctx, `SELECT `+strings.Join(names, ", ")+` FROM `+s.shown("record")+where("r.id"), args...)
-	if err != nil {
-		return nil, fmt.Errorf("read records: %w", err)
-	}
-	defer rows.Close()
+	w := wanted{name: "record", condition: where("r.id"), args: args}
+	w.columns, w.into = v.columns(d)
 	out := map[int64]*Record{}
-	seen := s.tally("record", "", names...)
-	for rows.Next() {
-		v = recordRow{}
-		if err := rows.Scan(into...); err != nil {
-			return nil, s.unread("record", err)
-		}
-		seen.add(into)
+	err = s.scan(ctx, w, func() (err error) {
 		r := v.Record
 		r.EventID, r.StationID = v.event.Int64, v.station.Int64
 		r.Event, r.Station = events[r.EventID], stations[r.StationID]
-		if r.Start, err = parseTime(v.start.String); err != nil {
-			return nil, s.unread("record", err)
-		}
+		r.Start, err = parseTime(v.start)
 		out[v.id] = &r
-	}
-	return out, s.unread("record", errors.Join(rows.Err(), seen.check()))
+		return err
+	})
+	return out, err
 }
 
 // recordRow is a record as SQL gives it.
@@ -292,7 +205,7 @@ type recordRow struct {
 	Record
 	id             int64
 	event, station sql.NullInt64
-	start          sql.NullString
+	start          string
 }
 
 func (v *recordRow) columns(d Details) (names []string, into []any) {

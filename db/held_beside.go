@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"slices"
 )
 
 // What is read beside components: what was found in them, and what was computed of them.
@@ -19,6 +20,19 @@ type beside struct {
 	conditioned map[roleOf]*Conditioning
 	findings    map[int64][]Finding
 	measures    map[roleOf]map[string]float64
+	peaks       map[roleOf]Peaks // nil where nobody asked
+}
+
+// describe adds to a component what is known of it.
+func (b *beside) describe(c *HeldComponent) {
+	of := roleOf{c.RecordID, c.Role}
+	c.Findings, c.Conditioning, c.Measures = b.findings[c.ID], b.conditioned[of], b.measures[of]
+	if b.peaks != nil {
+		var isThere bool
+		if c.Peaks, isThere = b.peaks[of]; !isThere {
+			c.Peaks = lostPeaks
+		}
+	}
 }
 
 // besideComponents reads what the details ask for.
@@ -37,7 +51,12 @@ func (s *Snapshot) besideComponents(ctx context.Context, details Details) (b bes
 		}
 	}
 	if details&DetailMeasures != 0 {
-		b.measures, err = s.measures(ctx)
+		if b.measures, err = s.measures(ctx); err != nil {
+			return b, err
+		}
+	}
+	if details&DetailPeaks != 0 {
+		b.peaks, err = s.peaks(ctx, `k.role NOT IN ('`+RoleRotD50+`', '`+RoleRotD100+`')`, componentRole)
 	}
 	return b, err
 }
@@ -50,64 +69,80 @@ func (s *Snapshot) ofComputed(table string) string {
 
 // conditionings are those of the generation.
 func (s *Snapshot) conditionings(ctx context.Context) (map[roleOf]*Conditioning, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, x.step_s, x.samples, x.lead_s, x.low_cut_hz, x.high_cut_hz, x.long_s`+s.ofComputed("conditioning"))
-	if err != nil {
-		return nil, fmt.Errorf("read conditioning: %w", err)
-	}
-	type row struct {
-		roleOf
-		computation int64
-		Conditioning
-	}
-	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.record, &v.role, &v.computation, &v.StepS, &v.Samples, &v.LeadS, &v.LowCutHz, &v.HighCutHz, &v.LongS}
+	var v conditioningRow
+	out, seen := map[roleOf]*Conditioning{}, &attributedConditioning{s.attribution(sealedConditioning, anyRole), &v}
+	err := s.scan(ctx, wanted{
+		name: sealedConditioning, columns: words(`record_id role computation_id step_s samples lead_s low_cut_hz high_cut_hz long_s`),
+		into: []any{&v.record, &v.role, &v.computation, &v.StepS, &v.Samples, &v.LeadS, &v.LowCutHz, &v.HighCutHz, &v.LongS}, seen: seen,
+	}, func() error {
+		out[v.roleOf] = new(v.Conditioning)
+		return nil
 	})
-	if err != nil {
-		return nil, s.unread("conditioning", err)
-	}
-	out, seen := make(map[roleOf]*Conditioning, len(found)), s.attribution(sealedConditioning, anyRole)
-	for i := range found {
-		v := &found[i]
-		seen.conditioning(v.roleOf, v.computation, &v.Conditioning)
-		out[v.roleOf] = &v.Conditioning
-	}
-	return out, seen.check()
+	return out, err
+}
+
+// conditioningRow is a conditioning as SQL gives it.
+type conditioningRow struct {
+	roleOf
+	computation int64
+	Conditioning
+}
+
+// attributedConditioning adds up conditionings.
+type attributedConditioning struct {
+	*attribution
+	row *conditioningRow
+}
+
+func (a *attributedConditioning) add([]any) {
+	a.conditioning(a.row.roleOf, a.row.computation, &a.row.Conditioning)
 }
 
 // findings are those of the components, by their ids and in the order of flags.
 func (s *Snapshot) findings(ctx context.Context) (map[int64][]Finding, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT component_id, flag, value, bound, words FROM `+s.shown("finding")+` ORDER BY component_id, flag`)
+	out := map[int64][]Finding{}
+	flags, err := s.flags(ctx)
 	if err != nil {
-		return nil, fmt.Errorf("read findings: %w", err)
+		return nil, err
 	}
-	type row struct {
-		component int64
-		Finding
-	}
-	fields := func(v *row) []any { return []any{&v.component, &v.Flag, &v.Value, &v.Bound, &v.Words} }
-	found, err := collect(rows, fields)
-	if err != nil {
-		return nil, s.unread("finding", err)
-	}
-	out, seen := map[int64][]Finding{}, map[string]*tally{}
-	for _, flag := range s.partsOf("finding") {
-		seen[flag] = s.tally("finding", flag, "component_id", "flag", "value", "bound", "words")
-	}
-	for i := range found {
-		v := &found[i]
-		t, isKnown := seen[v.Flag]
-		if !isKnown && s.seals != nil {
-			return nil, damage(s.Edition.ID, "finding", "a flag that was not stored")
-		}
-		t.add(fields(v))
-		out[v.component] = append(out[v.component], v.Finding)
-	}
-	for _, t := range seen {
-		if err := t.check(); err != nil {
+	var id int64
+	var v Finding
+	for _, flag := range flags {
+		err := s.scan(ctx, wanted{
+			name: "finding", part: flag, columns: words(`component_id flag value bound words`), into: []any{&id, &v.Flag, &v.Value, &v.Bound, &v.Words},
+		}, func() error {
+			out[id] = append(out[id], v)
+			return nil
+		})
+		if err != nil {
 			return nil, err
 		}
 	}
 	return out, nil
+}
+
+// flags are those of findings, in order: those that were stored and, where rows are read,
+// those that these have, which must be among them.
+func (s *Snapshot) flags(ctx context.Context) ([]string, error) {
+	flags := s.partsOf("finding")
+	if !s.isLaidOut {
+		rows, err := s.tx.QueryContext(ctx, `SELECT DISTINCT flag FROM `+s.shown("finding"))
+		if err != nil {
+			return nil, fmt.Errorf("read findings: %w", err)
+		}
+		found, err := collect(rows, func(flag *string) []any { return []any{flag} })
+		if err != nil {
+			return nil, s.unread("finding", err)
+		}
+		for _, flag := range found {
+			if s.seals != nil && !slices.Contains(flags, flag) {
+				return nil, damage(s.Edition.ID, "finding", "a flag that was not stored")
+			}
+		}
+		flags = append(flags, found...)
+	}
+	slices.Sort(flags)
+	return slices.Compact(flags), nil
 }
 
 // addConditionedFindings adds to the conditionings what was found in the motions that
@@ -168,46 +203,42 @@ func (s *Snapshot) Flag(ctx context.Context, components []HeldComponent, flags [
 
 // flagDelivered adds the flag to the components that have it, by their ids.
 func (s *Snapshot) flagDelivered(ctx context.Context, flagged map[int64][]Finding, flag string) error {
-	rows, err := s.tx.QueryContext(ctx, `SELECT component_id, flag FROM `+s.shown("finding")+` WHERE flag = ?`, flag)
-	if err != nil {
-		return fmt.Errorf("read findings: %w", err)
-	}
-	type row struct {
-		component int64
-		flag      string
-	}
-	found, err := collectSeen(rows, s.tally("finding", flag, "component_id", "flag"), func(v *row) []any { return []any{&v.component, &v.flag} })
-	if err != nil {
-		return s.unread("finding", err)
-	}
-	for _, v := range found {
-		flagged[v.component] = append(flagged[v.component], Finding{Flag: flag})
-	}
-	return nil
+	var id int64
+	var of string
+	return s.scan(ctx, wanted{name: "finding", part: flag, columns: words(`component_id flag`), into: []any{&id, &of}}, func() error {
+		flagged[id] = append(flagged[id], Finding{Flag: flag})
+		return nil
+	})
 }
 
 // flagLeft adds the flag to the components whose conditioned motion has it.
 func (s *Snapshot) flagLeft(ctx context.Context, flagged map[roleOf][]Finding, flag string) error {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, f.flag FROM conditioned_finding f JOIN `+s.shown("computed")+` k ON k.computation_id = f.computation_id WHERE f.flag = ?`, flag)
-	if err != nil {
-		return fmt.Errorf("read findings: %w", err)
-	}
-	type row struct {
-		roleOf
-		flag string
-	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.record, &v.role, &v.flag} })
-	if err != nil {
-		return s.unread("conditioned_finding", err)
-	}
-	is := editionSeal{sums: []int64{0}}
-	var b sealer
-	for _, v := range found {
-		is.rows++
-		is.sums[0] += b.row(v.record, v.role, v.flag)
-		flagged[v.roleOf] = append(flagged[v.roleOf], Finding{Flag: flag})
-	}
-	return s.isAsSealed(sealKey{sealedFlags, flag}, is)
+	var v roleOf
+	var of string
+	seen := &attributedFlags{snapshot: s, flag: flag, is: editionSeal{sums: []int64{0}}}
+	return s.scan(ctx, wanted{
+		name: sealedFlags, part: flag, columns: words(`record_id role flag`), into: []any{&v.record, &v.role, &of}, seen: seen,
+	}, func() error {
+		flagged[v] = append(flagged[v], Finding{Flag: flag})
+		return nil
+	})
+}
+
+// attributedFlags adds up which conditioned motions have a flag.
+type attributedFlags struct {
+	sealer
+	snapshot *Snapshot
+	flag     string
+	is       editionSeal
+}
+
+func (a *attributedFlags) add(into []any) {
+	a.is.rows++
+	a.is.sums[0] += a.row(into...)
+}
+
+func (a *attributedFlags) check() error {
+	return a.snapshot.isAsSealed(sealKey{sealedFlags, a.flag}, a.is)
 }
 
 // measures are those of the generation but for the peaks.
@@ -241,38 +272,47 @@ func (s *Snapshot) measures(ctx context.Context) (map[roleOf]map[string]float64,
 // RotatedPeaks returns the peaks that are stored under a role of RotD, by the
 // record's id: those of the records whose spectra of that role are stored.
 func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Peaks, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, x.name, x.value`+s.ofComputed("measure")+` WHERE k.role = ? AND x.name IN `+peakNames, role)
+	found, err := s.peaks(ctx, `k.role = ?`, func(r string) bool { return r == role }, role)
+	out := make(map[int64]Peaks, len(found))
+	for of, p := range found {
+		out[of.record] = p
+	}
+	return out, err
+}
+
+// peaks are those of the roles that meet a condition, and are wanted.
+func (s *Snapshot) peaks(ctx context.Context, condition string, wants func(role string) bool, args ...any) (map[roleOf]Peaks, error) {
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, x.name, x.value`+s.ofComputed("measure")+` WHERE x.name IN `+peakNames+` AND `+condition, args...)
 	if err != nil {
-		return nil, fmt.Errorf("read rotated peaks: %w", err)
+		return nil, fmt.Errorf("read peaks: %w", err)
 	}
-	type row struct {
-		roleOf
-		computation int64
-		name        string
-		value       float64
-	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.record, &v.role, &v.computation, &v.name, &v.value} })
-	if err != nil {
-		return nil, s.unread("measure", err)
-	}
-	out, seen := map[int64]Peaks{}, s.attribution(sealedPeaks, func(r string) bool { return r == role })
-	for _, v := range found {
-		seen.measure(v.roleOf, v.computation, v.name, v.value)
-		p, ok := out[v.record]
+	defer rows.Close()
+	out, seen := map[roleOf]Peaks{}, s.attribution(sealedPeaks, wants)
+	var of roleOf
+	var computation int64
+	var name string
+	var value float64
+	into := []any{&of.record, &of.role, &computation, &name, &value}
+	for rows.Next() {
+		if err := rows.Scan(into...); err != nil {
+			return nil, s.unread("measure", err)
+		}
+		seen.measure(of, computation, name, value)
+		p, ok := out[of]
 		if !ok {
 			p = lostPeaks
 		}
-		switch v.name {
+		switch name {
 		case MeasurePGA:
-			p.PGA = v.value
+			p.PGA = value
 		case MeasurePGV:
-			p.PGV = v.value
+			p.PGV = value
 		case MeasurePGD:
-			p.PGD = v.value
+			p.PGD = value
 		}
-		out[v.record] = p
+		out[of] = p
 	}
-	return out, seen.check()
+	return out, s.unread("measure", errors.Join(rows.Err(), seen.check()))
 }
 
 // computations are those of a role by record, read once.
@@ -282,21 +322,15 @@ func (s *Snapshot) computations(ctx context.Context, role string) (map[int64]int
 	if out := s.computed[role]; out != nil {
 		return out, nil
 	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT record_id, role, computation_id FROM `+s.shown("computed")+` WHERE role = ?`, role)
+	var of roleOf
+	var id int64
+	out := map[int64]int64{}
+	err := s.scan(ctx, wanted{name: "computed", part: role, columns: words(`record_id role computation_id`), into: []any{&of.record, &of.role, &id}}, func() error {
+		out[of.record] = id
+		return nil
+	})
 	if err != nil {
-		return nil, fmt.Errorf("read computations: %w", err)
-	}
-	type row struct {
-		roleOf
-		id int64
-	}
-	found, err := collectSeen(rows, s.tally("computed", role, "record_id", "role", "computation_id"), func(v *row) []any { return []any{&v.record, &v.role, &v.id} })
-	if err != nil {
-		return nil, s.unread("computed", err)
-	}
-	out := make(map[int64]int64, len(found))
-	for _, v := range found {
-		out[v.record] = v.id
+		return nil, err
 	}
 	s.computed[role] = out
 	return out, nil

@@ -45,46 +45,28 @@ func (s *Snapshot) Versions(ctx context.Context) ([]Version, error) {
 
 // versions are all components. All are read, since only all can be compared with their seal.
 func (s *Snapshot) versions(ctx context.Context) ([]Version, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, record_id, role, motion_id, step_s, samples, processing, low_cut_hz, high_cut_hz, source_id FROM `+s.shown("component"))
-	if err != nil {
-		return nil, s.unread("component", err)
-	}
-	seen := s.tally("component", "", "id", "record_id", "role", "motion_id", "step_s", "samples", "processing", "low_cut_hz", "high_cut_hz", "source_id")
-	type row struct {
-		Version
-		motion sql.NullInt64
-	}
-	found, err := collectSeen(rows, seen, func(v *row) []any {
-		return []any{&v.ComponentID, &v.RecordID, &v.Role, &v.motion, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz, &v.SourceID}
+	var v Version
+	var motion sql.NullInt64
+	var out []Version
+	err := s.scan(ctx, wanted{
+		name: "component", columns: words(`id record_id role motion_id step_s samples processing low_cut_hz high_cut_hz source_id`),
+		into: []any{&v.ComponentID, &v.RecordID, &v.Role, &motion, &v.StepS, &v.Samples, &v.Processing, &v.LowCutHz, &v.HighCutHz, &v.SourceID},
+	}, func() error {
+		v.MotionID = motion.Int64
+		out = append(out, v)
+		return nil
 	})
-	if err != nil {
-		return nil, s.unread("component", err)
-	}
-	out := make([]Version, len(found))
-	for i, v := range found {
-		out[i] = v.Version
-		out[i].MotionID = v.motion.Int64
-	}
-	return out, nil
+	return out, err
 }
 
 // recordCodes are the codes of records by their ids.
 func (s *Snapshot) recordCodes(ctx context.Context) (map[int64]string, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code FROM `+s.shown("record"))
-	if err != nil {
-		return nil, s.unread("record", err)
-	}
-	type row struct {
-		id   int64
-		code string
-	}
-	found, err := collectSeen(rows, s.tally("record", "", "id", "code"), func(v *row) []any { return []any{&v.id, &v.code} })
-	if err != nil {
-		return nil, s.unread("record", err)
-	}
-	out := make(map[int64]string, len(found))
-	for _, v := range found {
-		out[v.id] = v.code
-	}
-	return out, nil
+	var id int64
+	var code string
+	out := map[int64]string{}
+	err := s.scan(ctx, wanted{name: "record", columns: words(`id code`), into: []any{&id, &code}}, func() error {
+		out[id] = code
+		return nil
+	})
+	return out, err
 }

@@ -92,6 +92,9 @@ func (i *Inspection) linked(ctx context.Context) error {
 		if err := i.sealed(ctx, id, shown); err != nil {
 			return err
 		}
+		if err := i.laidOut(ctx, id); err != nil {
+			return err
+		}
 		for _, l := range []struct{ table, query string }{
 			{"component", `SELECT 'component ' || c.id || ' is of a record or file that is not there' FROM ` + shown("component") + ` c
 				LEFT JOIN ` + shown("record") + ` r ON r.id = c.record_id LEFT JOIN ` + shown("source_file") + ` f ON f.id = c.source_id WHERE r.id IS NULL OR f.id IS NULL`},
@@ -141,6 +144,26 @@ func (i *Inspection) sealed(ctx context.Context, id int64, shown tables) error {
 			}
 			i.found(Fault{Table: table, Text: fmt.Sprintf("edition %d, %s: %s; questions that read it fail", id, name, text)})
 		}
+	}
+	return nil
+}
+
+// laidOut compares what is laid out of an edition with what it showed when it was made.
+func (i *Inspection) laidOut(ctx context.Context, id int64) error {
+	seals, err := sealsOf(ctx, i.tx, id)
+	isThere := false
+	if err == nil {
+		isThere, err = isLaidOut(ctx, i.tx, id)
+	}
+	if err == nil && isThere {
+		s := Snapshot{tx: i.tx, Edition: Edition{ID: id}, seals: seals}
+		err = s.checkLayout(ctx)
+	}
+	if ctx.Err() != nil {
+		return ctx.Err()
+	}
+	if err != nil {
+		i.found(Fault{Table: layoutName, Text: fmt.Sprintf("edition %d: %v; questions that read it fail until the next run", id, err)})
 	}
 	return nil
 }

@@ -75,6 +75,7 @@ func (t *Tx) pruneEditions(ctx context.Context, keep int, p *Pruned) error {
 		`DELETE FROM computed WHERE generation_id IN (SELECT generation_id FROM edition WHERE id IN (SELECT value FROM json_each(?1)))
 			AND generation_id NOT IN (SELECT generation_id FROM edition WHERE id NOT IN (SELECT value FROM json_each(?1)))`,
 		`UPDATE run SET edition_id = NULL WHERE edition_id IN (SELECT value FROM json_each(?))`,
+		`DELETE FROM edition_column WHERE edition_id IN (SELECT value FROM json_each(?))`,
 		`DELETE FROM edition_seal WHERE edition_id IN (SELECT value FROM json_each(?))`,
 		`DELETE FROM edition WHERE id IN (SELECT value FROM json_each(?))`,
 	} {

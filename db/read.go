@@ -5,6 +5,8 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+	"maps"
+	"slices"
 	"sync"
 	"time"
 
@@ -18,6 +20,8 @@ type Snapshot struct {
 	shown    tables
 	seals    map[sealKey]editionSeal // nil of the working state, which has none
 	reserved []OffGridBlock          // by ReserveOffGrid
+	// isLaidOut says that the edition's columns can be read; see layOut.
+	isLaidOut bool
 	// hasVersions says whether components hold one motion, nil before they are read.
 	hasVersions *bool
 
@@ -27,6 +31,12 @@ type Snapshot struct {
 
 	Edition    Edition
 	Generation Generation // the edition's
+}
+
+// ofRows is the snapshot without what is laid out of its edition.
+func (s *Snapshot) ofRows() *Snapshot {
+	return &Snapshot{tx: s.tx, store: s.store, shown: s.shown, seals: s.seals, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{},
+		Edition: s.Edition, Generation: s.Generation}
 }
 
 // ErrEmpty says that nothing has been ingested into the store yet.
@@ -100,60 +110,73 @@ func nothingShown(ctx context.Context, q queryer) error {
 }
 
 func (s *Snapshot) events(ctx context.Context, where string, args []any) (map[int64]*Event, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, code, primary_id, coalesce((SELECT p.code FROM `+s.shown("event")+` p WHERE p.id = e.primary_id), code), coalesce(name, ''),
-		coalesce(origin_time, ''), latitude_deg, longitude_deg, depth_km, magnitude, coalesce(magnitude_type, '') FROM `+s.shown("event")+` e`+where, args...)
-	if err != nil {
-		return nil, fmt.Errorf("read events: %w", err)
-	}
 	type row struct {
 		id      int64
 		primary sql.NullInt64
 		origin  string
 		Event
 	}
-	seen := s.tally("event", "", "id", "code", "primary_id", "", "name", "origin_time", "latitude_deg", "longitude_deg", "depth_km", "magnitude", "magnitude_type")
-	found, err := collectSeen(rows, seen, func(v *row) []any {
-		return []any{&v.id, &v.OwnCode, &v.primary, &v.Code, &v.Name, &v.origin, &v.LatitudeDeg, &v.LongitudeDeg, &v.DepthKM, &v.Magnitude, &v.MagnitudeType}
+	var v row
+	primaries, out := map[int64]int64{}, map[int64]*Event{}
+	err := s.scan(ctx, wanted{
+		name: "event", columns: words(`id code primary_id name origin_time latitude_deg longitude_deg depth_km magnitude magnitude_type`), condition: where, args: args,
+		into: []any{&v.id, &v.OwnCode, &v.primary, &v.Name, &v.origin, &v.LatitudeDeg, &v.LongitudeDeg, &v.DepthKM, &v.Magnitude, &v.MagnitudeType},
+	}, func() (err error) {
+		e := v.Event
+		e.Code = e.OwnCode
+		if v.primary.Valid {
+			primaries[v.id] = v.primary.Int64
+		}
+		out[v.id] = &e
+		e.Origin, err = parseTime(v.origin)
+		return err
 	})
 	if err != nil {
-		return nil, s.unread("event", err)
+		return nil, err
 	}
-	out := make(map[int64]*Event, len(found))
-	for _, v := range found {
-		if v.Origin, err = parseTime(v.origin); err != nil {
-			return nil, err
-		}
-		out[v.id] = &v.Event
+	if where != "" {
+		return out, s.primaryCodes(ctx, out, primaries)
 	}
-	for _, v := range found {
-		if primary := out[v.primary.Int64]; primary != nil { // what was found by a damaged row is not
-			out[v.id].Code = primary.OwnCode
+	for id, primary := range primaries {
+		if p := out[primary]; p != nil {
+			out[id].Code = p.OwnCode
 		}
 	}
 	return out, nil
 }
 
-func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT id, network, code, coalesce(name, ''), latitude_deg, longitude_deg, elevation_m, vs30_m_s, coalesce(site_class, '') FROM `+s.shown("station")+where, args...)
-	if err != nil {
-		return nil, fmt.Errorf("read stations: %w", err)
-	}
-	type row struct {
-		id int64
-		Station
-	}
-	seen := s.tally("station", "", "id", "network", "code", "name", "latitude_deg", "longitude_deg", "elevation_m", "vs30_m_s", "site_class")
-	found, err := collectSeen(rows, seen, func(v *row) []any {
-		return []any{&v.id, &v.Network, &v.Code, &v.Name, &v.LatitudeDeg, &v.LongitudeDeg, &v.ElevationM, &v.Vs30MPS, &v.SiteClass}
+// primaryCodes gives events, of which not all were read, the codes of those for which they stand.
+func (s *Snapshot) primaryCodes(ctx context.Context, events map[int64]*Event, primaries map[int64]int64) error {
+	var id int64
+	var code string
+	codes := map[int64]string{}
+	err := s.scan(ctx, wanted{
+		name: "event", columns: words(`id code`), into: []any{&id, &code},
+		condition: ` WHERE id IN (SELECT value FROM json_each(?))`, args: []any{idList(slices.Collect(maps.Values(primaries)))},
+	}, func() error {
+		codes[id] = code
+		return nil
 	})
-	if err != nil {
-		return nil, s.unread("station", err)
+	for id, primary := range primaries {
+		if code, isThere := codes[primary]; isThere {
+			events[id].Code = code
+		}
 	}
-	out := make(map[int64]*Station, len(found))
-	for _, v := range found {
-		out[v.id] = &v.Station
-	}
-	return out, nil
+	return err
+}
+
+func (s *Snapshot) stations(ctx context.Context, where string, args []any) (map[int64]*Station, error) {
+	var id int64
+	var v Station
+	out := map[int64]*Station{}
+	err := s.scan(ctx, wanted{
+		name: "station", columns: words(`id network code name latitude_deg longitude_deg elevation_m vs30_m_s site_class`), condition: where, args: args,
+		into: []any{&id, &v.Network, &v.Code, &v.Name, &v.LatitudeDeg, &v.LongitudeDeg, &v.ElevationM, &v.Vs30MPS, &v.SiteClass},
+	}, func() error {
+		out[id] = new(v)
+		return nil
+	})
+	return out, err
 }
 
 // Motion returns a component's motion, its samples checked against their digest. The

@@ -59,6 +59,8 @@ func appendValue(dst []byte, v any) []byte {
 		return binary.LittleEndian.AppendUint64(dst, math.Float64bits(v))
 	case string:
 		return append(dst, v...)
+	case []byte: // of a damaged row: none is sealed, and no text is to pass for one
+		return append(append(dst, v...), 0xff)
 	case *int64:
 		return appendValue(dst, *v)
 	case *int:

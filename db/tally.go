@@ -1,9 +1,6 @@
 package db
 
-import (
-	"database/sql"
-	"slices"
-)
+import "slices"
 
 // tally adds up what is read of a table, against its seal. One of a snapshot that has no
 // seals, as of the working state, is nil, and finds everything right.
@@ -68,16 +65,4 @@ func (t *tally) check() error {
 		return damage(t.edition, t.key.name, text)
 	}
 	return nil
-}
-
-// collectSeen is collect of rows that a tally adds up and, in the end, compares.
-func collectSeen[T any](rows *sql.Rows, seen *tally, fields func(*T) []any) ([]T, error) {
-	found, err := collect(rows, fields)
-	if err != nil || seen == nil {
-		return found, err
-	}
-	for i := range found {
-		seen.add(fields(&found[i]))
-	}
-	return found, seen.check()
 }
