@@ -7,6 +7,7 @@ import (
 	"fmt"
 
 	"golang.org/x/sync/errgroup"
+	sqlite3 "modernc.org/sqlite/lib"
 )
 
 // Gathered counts what came from a shard.
@@ -57,14 +58,27 @@ func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, tell
 		}
 	}
 	if err != nil {
-		err = fmt.Errorf("take over %s: %w", part.Shard, explain(err))
+		err = fmt.Errorf("take over %s: %w", part.Shard, s.whichIs(err))
 	}
 	return g.done, err
 }
 
+// whichIs has an error of taking over name the store where that is damaged, as the shard has
+// named itself where it is.
+func (s *Store) whichIs(err error) error {
+	if _, isOfShard := errors.AsType[*unreadError](err); isOfShard {
+		return err
+	}
+	if codeOf(err) == sqlite3.SQLITE_CORRUPT {
+		return fmt.Errorf("%s: %w", s.path, explain(err))
+	}
+	return explain(err)
+}
+
 func (g *gathering) count(ctx context.Context) error {
-	return g.part.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM intake WHERE shard = ?) + (SELECT count(*) FROM computation WHERE generation_id = ?)`,
+	err := g.part.tx.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM intake WHERE shard = ?) + (SELECT count(*) FROM computation WHERE generation_id = ?)`,
 		g.part.Number, g.part.Generation.ID).Scan(&g.total)
+	return g.part.unread(ctx, err)
 }
 
 // update is one batch of so many files or computations.
@@ -92,7 +106,7 @@ func (g *gathering) events(ctx context.Context) error {
 		return nil
 	}
 	if err != nil {
-		return err
+		return g.part.unread(ctx, err)
 	}
 	said, err := s.open()
 	if err != nil {
@@ -154,7 +168,7 @@ func (g *gathering) readFiles(ctx context.Context, pass func(filesComing) error)
 	for key := BeforeIntake; ; {
 		rows, err := intakeRows(ctx, g.part.tx, g.part.Number, key)
 		if err != nil || len(rows) == 0 {
-			return err
+			return g.part.unread(ctx, err)
 		}
 		key = rows[len(rows)-1].key
 		batch := filesComing{looked: len(rows)}
@@ -199,19 +213,19 @@ func (p *Part) intake(ctx context.Context, row intakeRow) (Intake, error) {
 	in := Intake{IntakeKey: row.key}
 	s := sealedSaying{sum: row.sum}
 	if err := p.tx.QueryRowContext(ctx, `SELECT said FROM intake WHERE id = ?`, row.id).Scan(&s.said); err != nil {
-		return in, err
+		return in, p.unread(ctx, err)
 	}
 	var err error
 	if in.Said, err = s.open(); err != nil {
 		return in, p.damaged("intake of "+row.key.Path, err)
 	}
-	rows, err := p.tx.QueryContext(ctx, `SELECT i.channel, i.samples, s.sha256, s.data FROM intake_series i JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
+	rows, err := p.tx.QueryContext(ctx, `SELECT i.channel, i.samples, s.sha256, s.data FROM intake_series i LEFT JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
 	if err != nil {
-		return in, err
+		return in, p.unread(ctx, err)
 	}
 	in.Series, err = collect(rows, func(s *IntakeSeries) []any { return []any{&s.Channel, &s.Samples, &s.Digest, &s.Data} })
 	if err != nil {
-		return in, err
+		return in, p.unread(ctx, err)
 	}
 	for _, s := range in.Series {
 		if _, err := DecodeSamples(s.Data, s.Samples, s.Digest); err != nil {
@@ -262,7 +276,7 @@ func (g *gathering) gone(ctx context.Context) error {
 		for _, row := range rows {
 			held, err := idOf(ctx, g.part.tx, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ?`, row.key.Path, row.key.Member, g.part.Number)
 			if err != nil {
-				return err
+				return g.part.unread(ctx, err)
 			}
 			if held == 0 {
 				gone = append(gone, row.key)

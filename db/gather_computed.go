@@ -43,17 +43,17 @@ func (g *gathering) readComputations(ctx context.Context, pass func(computations
 		rows, err := g.part.tx.QueryContext(ctx, `SELECT id, inputs, coalesce(failure, '') FROM computation WHERE generation_id = ? AND id > ? ORDER BY id LIMIT ?`,
 			g.part.Generation.ID, last, gatherBatch)
 		if err != nil {
-			return err
+			return g.part.unread(ctx, err)
 		}
 		found, err := collect(rows, func(c *partComputation) []any { return []any{&c.id, &c.inputs, &c.failure} })
 		if err != nil || len(found) == 0 {
-			return err
+			return g.part.unread(ctx, err)
 		}
 		last = found[len(found)-1].id
 		batch := computationsComing{looked: len(found)}
 		for _, c := range found {
 			if c.of, err = g.part.madeOf(ctx, c.inputs); err != nil {
-				return err
+				return g.part.unread(ctx, err)
 			}
 			held, err := heldComputation(ctx, g.store.read, g.generation, &c)
 			if err != nil {
@@ -64,7 +64,7 @@ func (g *gathering) readComputations(ctx context.Context, pass func(computations
 			}
 		}
 		if err := g.readComputed(ctx, batch.list); err != nil {
-			return err
+			return g.part.unread(ctx, err)
 		}
 		if err := pass(batch); err != nil {
 			return err

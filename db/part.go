@@ -27,8 +27,8 @@ type Part struct {
 // ErrUnfinished where its last run is at work or did not come to its end.
 func OpenPart(ctx context.Context, path string) (*Part, error) {
 	p, err := openPart(ctx, path)
-	if codeOf(err) == sqlite3.SQLITE_CORRUPT {
-		return nil, fmt.Errorf("open shard %s: %w; remove it and run its shard again", path, explain(err))
+	if _, isNamed := errors.AsType[*unreadError](err); isNamed {
+		return nil, fmt.Errorf("open shard %w", err)
 	}
 	if err != nil {
 		return nil, fmt.Errorf("open shard %s: %w", path, explain(err))
@@ -38,10 +38,13 @@ func OpenPart(ctx context.Context, path string) (*Part, error) {
 
 func openPart(ctx context.Context, path string) (*Part, error) {
 	handle, err := openInspected(ctx, path)
+	p := &Part{path: path, handle: handle}
+	if codeOf(err) == sqlite3.SQLITE_CORRUPT {
+		return nil, p.unread(ctx, err)
+	}
 	if err != nil {
 		return nil, err
 	}
-	p := &Part{path: path, handle: handle}
 	tx, err := handle.BeginTx(ctx, nil)
 	if err == nil {
 		p.tx = newSession(tx)
@@ -57,7 +60,7 @@ func openPart(ctx context.Context, path string) (*Part, error) {
 func (p *Part) describe(ctx context.Context) (err error) {
 	var ok bool
 	if p.Shard, ok, err = shardOf(ctx, p.tx); err != nil {
-		return err
+		return p.unread(ctx, err)
 	}
 	switch {
 	case !ok:
@@ -68,20 +71,20 @@ func (p *Part) describe(ctx context.Context) (err error) {
 	t := &Tx{tx: p.tx}
 	last, err := t.idOf(ctx, `SELECT coalesce((SELECT outcome = 'done' FROM run ORDER BY id DESC LIMIT 1), 0)`)
 	if err != nil {
-		return err
+		return p.unread(ctx, err)
 	}
 	if last == 0 {
 		return fmt.Errorf("%w: run %s again", ErrUnfinished, p.Shard)
 	}
 	p.Followed, _, err = t.Followed(ctx)
 	if err = errors.Join(err, p.noteSightings(ctx)); err != nil {
-		return err
+		return p.unread(ctx, err)
 	}
 	p.Generation, ok, err = t.Current(ctx)
 	if err == nil && !ok {
-		err = errors.New("nothing was computed of it")
+		return errors.New("nothing was computed of it")
 	}
-	return err
+	return p.unread(ctx, err)
 }
 
 // Path returns the path under which the shard was opened.
@@ -97,5 +100,29 @@ func (p *Part) Close() error {
 
 // damaged is the error of what the shard has lost.
 func (p *Part) damaged(what string, err error) error {
-	return fmt.Errorf("%s: %s: %w; remove the file and run %s again", p.path, what, err, p.Shard)
+	shard := "its shard"
+	if p.Count > 0 {
+		shard = p.Shard.String()
+	}
+	return fmt.Errorf("%s: %s: %w; swaybook verify lists all that is damaged; remove the file and run %s again", p.path, what, err, shard)
+}
+
+// unreadError says that the file of a shard is damaged, and names it.
+type unreadError struct{ err error }
+
+func (e *unreadError) Error() string { return e.err.Error() }
+func (e *unreadError) Unwrap() error { return e.err }
+
+// unread is the error of a read of the shard, by the name of its file. Where SQLite has nothing
+// against the pages, but something else stands in them than was written, a page is in the
+// place of another one.
+func (p *Part) unread(ctx context.Context, err error) error {
+	if err == nil || ctx.Err() != nil {
+		return err
+	}
+	switch codeOf(err) {
+	case sqlite3.SQLITE_OK, sqlite3.SQLITE_CORRUPT:
+		return &unreadError{p.damaged("the file is damaged, or not all of it is there", err)}
+	}
+	return fmt.Errorf("%s: %w", p.path, explain(err))
 }

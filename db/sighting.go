@@ -82,7 +82,7 @@ func CompareSightings(ctx context.Context, parts []*Part) (out Unseen, err error
 			err = s.next()
 		}
 		if err != nil {
-			return out, fmt.Errorf("%s: what was seen: %w", p.Path(), explain(err))
+			return out, fmt.Errorf("what was seen: %w", p.unread(ctx, err))
 		}
 		heads[i] = s
 	}
@@ -96,14 +96,14 @@ func CompareSightings(ctx context.Context, parts []*Part) (out Unseen, err error
 		if least < 0 {
 			return out, nil
 		}
-		if err := out.add(parts, heads, least); err != nil {
+		if err := out.add(ctx, parts, heads, least); err != nil {
 			return out, err
 		}
 	}
 }
 
 // add counts the least of the files that come next, and goes on behind it.
-func (u *Unseen) add(parts []*Part, heads []*sightings, least int) error {
+func (u *Unseen) add(ctx context.Context, parts []*Part, heads []*sightings, least int) error {
 	key, sum, n := heads[least].key, bytes.Clone(heads[least].sum), 0
 	for i, s := range heads {
 		if !s.has || s.key != key {
@@ -114,7 +114,7 @@ func (u *Unseen) add(parts []*Part, heads []*sightings, least int) error {
 		}
 		n++
 		if err := s.next(); err != nil {
-			return fmt.Errorf("%s: what was seen: %w", parts[i].Path(), explain(err))
+			return fmt.Errorf("what was seen: %w", parts[i].unread(ctx, err))
 		}
 	}
 	if n < len(heads) {

@@ -300,7 +300,7 @@ func TestCombineRefuses(t *testing.T) {
 		{"nothing there", "no such store", []string{filepath.Join(dir, "nothing.db")}},
 		{"a folder", "it is a folder", []string{records}},
 		{"half a shard", "half.db: the file is damaged, or not all of it is there", []string{halfOf(t, shards[0])}},
-		{"half a shard", "remove it and run its shard again", []string{halfOf(t, shards[0])}},
+		{"half a shard", "remove the file and run ", []string{halfOf(t, shards[0])}},
 		{"no store", "not a swaybook store", []string{filepath.Join(records, "catalogue.csv")}},
 	} {
 		if text := combines(t, exitFailed, out, c.shards...); !strings.Contains(text, c.want) {
