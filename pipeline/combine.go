@@ -36,13 +36,9 @@ type Combination struct {
 // as they were. A run that was stopped is gone on with; nothing is published before the end.
 func Combine(ctx context.Context, store Combined, parts []*db.Part, opts Options, study Study) (Combination, error) {
 	opts = withDefaults(opts)
-	c := &combining{store: store, parts: sorted(parts)}
-	c.study = study
-	err := errors.Join(c.check(), c.checkStudy(opts))
-	if err == nil {
-		err = c.compare(ctx)
-	}
-	if err != nil {
+	c := newCombining(parts, study)
+	c.store = store
+	if err := c.fit(ctx, opts); err != nil {
 		return Combination{}, err
 	}
 	run, err := c.begin(ctx, opts)
@@ -82,7 +78,21 @@ type combining struct {
 	gathered db.Gathered
 }
 
+func newCombining(parts []*db.Part, study Study) *combining {
+	c := &combining{parts: sorted(parts)}
+	c.study = study
+	return c
+}
+
 func (c *combining) count() int { return c.parts[0].Count }
+
+// fit looks whether the parts can be combined, into whatever store.
+func (c *combining) fit(ctx context.Context, opts Options) error {
+	if err := errors.Join(c.check(), c.checkStudy(opts)); err != nil {
+		return err
+	}
+	return c.compare(ctx)
+}
 
 // check looks whether the parts go together.
 func (c *combining) check() error {

@@ -69,9 +69,10 @@ func claim(ctx context.Context, tx *db.Tx, shard db.Shard) error {
 	return fmt.Errorf("the store is %s: say --shard %d/%d, or name another store with --store", held, held.Number, held.Count)
 }
 
-// CheckParts says what keeps parts from being combined, into whatever store.
-func CheckParts(parts []*db.Part) error {
-	return (&combining{parts: sorted(parts)}).check()
+// CheckParts says what keeps parts from being combined, for a study or, as the zero value, for
+// none, into whatever store.
+func CheckParts(ctx context.Context, parts []*db.Part, opts Options, study Study) error {
+	return newCombining(parts, study).fit(ctx, opts)
 }
 
 // claimForStudy does so for a study, whose store may come back from shards that were combined

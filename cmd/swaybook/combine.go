@@ -131,7 +131,7 @@ func runCombine(ctx context.Context, o combineOptions, w io.Writer) (err error) 
 		return err
 	}
 	defer func() { err = errors.Join(err, closeParts(parts)) }()
-	if err := pipeline.CheckParts(parts); err != nil { // before there is a store
+	if err := pipeline.CheckParts(ctx, parts, o.ingest.pipeline, pipeline.Study{}); err != nil { // before there is a store
 		return notCombined(o.ingest.store, err)
 	}
 	return lockedAt(ctx, o.ingest.store, o.ingest.pipeline.Started, db.AnySolver, func(store *db.Store) error { return combine(ctx, store, parts, o, w) })

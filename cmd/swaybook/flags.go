@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"log/slog"
 	"os"
 	"slices"
@@ -133,12 +134,28 @@ func lockedAt(ctx context.Context, path string, started time.Time, solver string
 		return err
 	}
 	defer func() { err = errors.Join(err, lock.Release()) }()
+	_, err = createdAt(ctx, path, solver, f)
+	return err
+}
+
+// createdAt is lockedAt for who has the lock. A store that was not there does not stay where f
+// fails before anything has come into it, which isGone says.
+func createdAt(ctx context.Context, path, solver string, f func(store *db.Store) error) (isGone bool, err error) {
+	_, errBefore := os.Stat(path)
 	store, err := db.Create(ctx, path, solver)
 	if err != nil {
-		return err
+		return false, err
 	}
-	defer func() { err = errors.Join(err, store.Close()) }()
-	return f(store)
+	err = f(store)
+	if err != nil && errors.Is(errBefore, fs.ErrNotExist) {
+		var errBlank error
+		isGone, errBlank = store.IsBlank(context.WithoutCancel(ctx))
+		err = errors.Join(err, errBlank)
+	}
+	if err = errors.Join(err, store.Close()); isGone {
+		err = errors.Join(err, db.Remove(path))
+	}
+	return isGone, err
 }
 
 // explainNoStore says how to make a store.

@@ -24,6 +24,7 @@ type studyRun struct {
 	plan    *studyPlan
 	options reprocessOptions
 	store   *db.Store
+	parts   []*db.Part // the shards to combine, none where files are read
 	// gathered is what came from shards, and isNew says that the run made an edition.
 	gathered db.Gathered
 	isNew    bool
@@ -69,13 +70,22 @@ func (r *studyRun) write(w io.Writer) error {
 
 // run makes the store that of the study's files, and writes what it asks for.
 func (r *studyRun) run(ctx context.Context) (err error) {
-	if err := r.plan.checkShards(r.options.combine); err != nil { // before there is a store
-		return err
+	if r.options.combine > 0 {
+		if r.parts, err = r.plan.openShards(ctx, r.options); err != nil { // before there is a store
+			return err
+		}
+		defer func() { err = errors.Join(err, closeParts(r.parts)) }()
 	}
-	if r.store, err = db.Create(ctx, r.plan.study.Store.Value, db.AnySolver); err != nil {
-		return err
+	isGone, err := createdAt(ctx, r.plan.study.Store.Value, db.AnySolver, func(store *db.Store) error { return r.runIn(ctx, store) })
+	if isGone {
+		r.state.Run = nil // nobody can ask for it any more
 	}
-	defer func() { err = errors.Join(err, r.store.Close()) }()
+	return err
+}
+
+// runIn is run on the open store.
+func (r *studyRun) runIn(ctx context.Context, store *db.Store) (err error) {
+	r.store = store
 	opts := r.plan.ingest.pipeline
 	opts.Takes = r.plan.study.Takes
 	var before map[string]db.Written

@@ -90,15 +90,10 @@ func (r studyShardReport) end(w io.Writer, asJSON bool, done pipeline.Reprocesse
 // make makes the study's store that of its files, or of its shards.
 func (r *studyRun) make(ctx context.Context, opts pipeline.Options) (done pipeline.Reprocessed, err error) {
 	study := r.plan.followed(r.options, r.approve)
-	if r.options.combine == 0 {
+	if len(r.parts) == 0 {
 		return pipeline.Reprocess(ctx, r.store, opts, study)
 	}
-	parts, err := openParts(ctx, r.plan.shardStores(r.options.combine))
-	if err != nil {
-		return done, err
-	}
-	defer func() { err = errors.Join(err, closeParts(parts)) }()
-	combined, err := pipeline.Combine(ctx, r.store, parts, combineWith(opts, r.plan.ingest.monitor), study)
+	combined, err := pipeline.Combine(ctx, r.store, r.parts, combineWith(opts, r.plan.ingest.monitor), study)
 	if r.gathered = combined.Gathered; err != nil {
 		err = notCombined(r.store.Path(), err)
 	}
@@ -123,12 +118,20 @@ func (p *studyPlan) missingShards(count int) (missing []int) {
 	return missing
 }
 
-// checkShards refuses to combine so many shards where some were never filled.
-func (p *studyPlan) checkShards(count int) error {
-	missing := p.missingShards(count)
-	if len(missing) == 0 {
-		return nil
+// openShards opens the shards that are to be combined, all of which must be there, and go
+// together.
+func (p *studyPlan) openShards(ctx context.Context, o reprocessOptions) ([]*db.Part, error) {
+	count, store := o.combine, p.study.Store.Value
+	if missing := p.missingShards(count); len(missing) > 0 {
+		return nil, fmt.Errorf("shards that are missing of %d beside %s: %s; fill them: swaybook reprocess %s --shard I/%d",
+			count, store, numbers(missing), cluster.Quote(p.study.File), count)
 	}
-	return fmt.Errorf("shards that are missing of %d beside %s: %s; fill them: swaybook reprocess %s --shard I/%d",
-		count, p.study.Store.Value, numbers(missing), cluster.Quote(p.study.File), count)
+	parts, err := openParts(ctx, p.shardStores(count))
+	if err != nil {
+		return nil, err
+	}
+	if err := pipeline.CheckParts(ctx, parts, p.ingest.pipeline, p.followed(o, approveAll)); err != nil {
+		return nil, errors.Join(notCombined(store, err), closeParts(parts))
+	}
+	return parts, nil
 }
