@@ -21,7 +21,9 @@ func combineCommand() *cli.Command {
 		Description: "The shards are those that ingest --shard made of one archive, all in the same way. OUT becomes what one ingest of\n" +
 			"all their files would have made, in whatever order they are named and however often; what was computed is taken\n" +
 			"over. A run that was stopped is finished by the next one. Shards that were combined before stay, so that only those\n" +
-			"that have changed need be named again.",
+			"that have changed need be named again.\n\n" +
+			"Exit codes: 0 done; 1 failed: shards cannot be read or do not go together; 2 wrong usage; 3 done, but some files were\n" +
+			"rejected, or shards are missing; 5 another run holds the store; 130 interrupted.",
 		Flags: []cli.Flag{
 			&cli.IntFlag{Name: "workers", DefaultText: "one a processor", Usage: "files, or results, in work at the same time"},
 			rotationFlag(),
@@ -157,7 +159,7 @@ func combine(ctx context.Context, store *db.Store, parts []*db.Part, o combineOp
 	switch {
 	case done.Summary.Damaged > 0:
 		return fmt.Errorf("%s is damaged (records: %d); combine the shards into a new store", o.ingest.store, done.Summary.Damaged)
-	case report.Refused > 0 || !done.Complete():
+	case report.Refused > 0 || len(report.Missing) > 0 || !done.Complete():
 		return errRejected
 	}
 	return nil
@@ -225,7 +227,7 @@ func (r combineReport) print(w io.Writer, asJSON bool) error {
 		p.printf("  results damaged in shards, not taken    %7d\n", r.Taken.Damaged)
 	}
 	if len(r.Missing) > 0 {
-		p.printf("Shards that are missing: %s\n", numbers(r.Missing))
+		p.printf("Shards that are missing, whose records lack until they are combined too: %s\n", numbers(r.Missing))
 	}
 	r.Unseen.print(p)
 	switch {

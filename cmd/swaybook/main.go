@@ -25,14 +25,14 @@ const (
 	exitDone        = 0
 	exitFailed      = 1
 	exitUsage       = 2
-	exitRejected    = 3 // done, but some files were rejected
+	exitRejected    = 3 // done, but some files were rejected, or shards are missing
 	exitHeld        = 4 // done, but the results are held back
 	exitLocked      = 5 // another run holds the store
 	exitInterrupted = 130
 )
 
-// errRejected ends a command that did its work although files were rejected.
-// What was rejected has been reported by then.
+// errRejected ends a command that did its work although files were rejected, or shards
+// were missing. What was rejected, or is missing, has been reported by then.
 var errRejected = errors.New("some files were rejected")
 
 // errInterrupted ends a command that somebody stopped.
@@ -125,8 +125,8 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Version: version,
 		Description: "Reads record files into a store, computes their response spectra, and answers for a structure\n" +
 			"what displacement, base shear and base moment the recorded motions produced.\n\n" +
-			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected;\n" +
-			"4 done, but the results are held back; 5 another run holds the store; 130 interrupted.\n\n" + caution,
+			"Exit codes: 0 done; 1 failed; 2 wrong usage; 3 done, but some files were rejected,\n" +
+			"or shards are missing; 4 done, but the results are held back; 5 another run holds the store; 130 interrupted.\n\n" + caution,
 		Flags:  globalFlags(),
 		Before: checkGlobalFlags,
 		// The name of a file may hold commas; lists are for their own flags to read.
