@@ -50,7 +50,7 @@ func reprocessCommand() *cli.Command {
 			plan, err := readStudyPlan(c, c.Args().First())
 			if err != nil {
 				if plan != nil && plan.study != nil && !c.Bool("check") && rank(err) == exitFailed {
-					err = errors.Join(err, plan.leaveFailure(c.Context, err))
+					err = errors.Join(err, plan.leaveFailure(c.Context, o.shard, err))
 				}
 				return err
 			}

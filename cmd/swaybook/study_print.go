@@ -84,9 +84,10 @@ type fileReport struct {
 
 func (p *studyPlan) report(o reprocessOptions) planReport {
 	s := p.study
+	_, state, metrics := p.places(o.shard)
 	r := planReport{
 		Name: s.Name.Value, Study: s.Path(), Sources: []sourceReport{}, Include: patternTexts(s.Include), Exclude: patternTexts(s.Exclude),
-		Ingest: settingReports(s.Ingest), MaxDrift: s.MaxDrift, State: given(s.State), Metrics: given(s.Metrics),
+		Ingest: settingReports(s.Ingest), MaxDrift: s.MaxDrift, State: given(state), Metrics: given(metrics),
 		Selections: []selectionReport{}, Products: []productReport{},
 	}
 	r.Store.Path, r.Store.IsNew = s.Store.Value, p.isNew
@@ -133,11 +134,11 @@ func (p *studyPlan) shard(s db.Shard) shardPlan {
 	return shardPlan{s.Number, s.Count, path, db.MustExist(path) != nil}
 }
 
-func given(t study.Text) *string {
-	if t.Value == "" {
+func given(path string) *string {
+	if path == "" {
 		return nil
 	}
-	return &t.Value
+	return &path
 }
 
 func patternTexts(patterns []study.Pattern) []string {

@@ -38,20 +38,10 @@ var errHeld = errors.New("results are held back")
 // runReprocess carries out a plan, unless another run holds the store, and says what became
 // of it: in print, and in the files that the study wants it in.
 func runReprocess(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) error {
-	pipelined := &plan.ingest.pipeline
-	lock, err := db.TakeLock(ctx, plan.study.Store.Value, holder(pipelined.Started))
-	if _, isHeld := errors.AsType[*db.LockedError](err); isHeld {
-		return err // whoever holds it writes the state
-	}
-	r := &studyRun{plan: plan, options: o, state: *newStudyState(plan)}
-	if err == nil {
-		err = r.run(ctx)
-	}
-	plan.ingest.monitor.end()
-	r.state.end(err, pipelined.Clock(), pipelined.Started)
-	err = errors.Join(err, r.state.leave(plan.study))
-	if lock != nil {
-		err = errors.Join(err, lock.Release())
+	r := &studyRun{plan: plan, options: o, state: *newStudyState(plan, db.Shard{})}
+	err := r.state.account(ctx, plan, func() error { return r.run(ctx) })
+	if r.state.Ended == "" {
+		return err
 	}
 	if errPrint := r.write(w); errPrint != nil && err == nil {
 		err = errPrint
@@ -76,11 +66,7 @@ func (r *studyRun) run(ctx context.Context) (err error) {
 		}
 		defer func() { err = errors.Join(err, closeParts(r.parts)) }()
 	}
-	isGone, err := createdAt(ctx, r.plan.study.Store.Value, db.AnySolver, func(store *db.Store) error { return r.runIn(ctx, store) })
-	if isGone {
-		r.state.Run = nil // nobody can ask for it any more
-	}
-	return err
+	return r.state.inStore(ctx, func(store *db.Store) error { return r.runIn(ctx, store) })
 }
 
 // runIn is run on the open store.
@@ -93,7 +79,8 @@ func (r *studyRun) runIn(ctx context.Context, store *db.Store) (err error) {
 		return err
 	}
 	done, err := r.make(ctx, opts)
-	r.note(done, err == nil)
+	r.isNew = done.IsNew
+	r.state.note(done, r.plan.ingest, err == nil)
 	if err == nil {
 		if err := r.outputs.set.Close(); err != nil { // nothing is to be undone any more
 			return err
@@ -107,26 +94,6 @@ func (r *studyRun) runIn(ctx context.Context, store *db.Store) (err error) {
 		err = errors.Join(err, r.outputs.set.Undo())
 	}
 	return errors.Join(err, r.outputs.set.Close())
-}
-
-// note takes over what the run did.
-func (r *studyRun) note(done pipeline.Reprocessed, isWhole bool) {
-	s := &r.state
-	r.isNew = done.IsNew
-	s.Run, s.Edition, s.Published, s.Before = numbered(done.Run), numbered(done.Edition), numbered(done.Published), numbered(done.Before)
-	s.Unseen = newUnseenReport(done.Unseen)
-	if s.IsRead = done.IsRead; done.IsRead {
-		report := newIngestReport(r.plan.ingest, done.Summary, isWhole)
-		s.Ingest = &report
-	}
-}
-
-// numbered is a number of a run, nil for none.
-func numbered(id int64) *int64 {
-	if id == 0 {
-		return nil
-	}
-	return &id
 }
 
 // follow does what comes after the state of the store is settled.

@@ -19,9 +19,28 @@ func shardStore(store string, s db.Shard) string {
 	return fmt.Sprintf("%s.shard-%d-of-%d%s", strings.TrimSuffix(store, ext), s.Number, s.Count, ext)
 }
 
-// ownShards are the stores of a study's shards, which are no records.
+// shardState is where the state of the last run of a shard is left: beside its store.
+func shardState(store string) string {
+	return strings.TrimSuffix(store, filepath.Ext(store)) + ".state.json"
+}
+
+// places are where a run has its store, and leaves state and metrics, "" for nowhere. That of a
+// shard leaves no metrics: these are of the study, of which it changes no answer.
+func (p *studyPlan) places(shard db.Shard) (store, state, metrics string) {
+	s := p.study
+	if shard.Count == 0 {
+		return s.Store.Value, s.State.Value, s.Metrics.Value
+	}
+	if store = shardStore(s.Store.Value, shard); s.State.Value != "" {
+		state = shardState(store)
+	}
+	return store, state, ""
+}
+
+// ownShards are the stores of a study's shards, and their states, which are no records.
 func (p *studyPlan) ownShards(count int) {
 	for _, path := range p.shardStores(count) {
+		p.ingest.pipeline.Own[shardState(path)] = "the state of a shard"
 		for name, what := range db.Files(path) {
 			p.ingest.pipeline.Own[name] = what
 		}
@@ -31,25 +50,50 @@ func (p *studyPlan) ownShards(count int) {
 // runStudyShard makes a shard's store that of its part of the study's files as they are. The
 // study's questions are left to the run that combines the shards.
 func runStudyShard(ctx context.Context, plan *studyPlan, o reprocessOptions, w io.Writer) error {
-	ingest := plan.ingest
-	ingest.store = shardStore(plan.study.Store.Value, o.shard)
-	ingest.pipeline.Shard, ingest.pipeline.Takes, ingest.pipeline.Decided = o.shard, plan.study.Takes, plan.decided
 	plan.ownShards(o.shard.Count)
-	return lockedAt(ctx, ingest.store, ingest.pipeline.Started, db.AnySolver, func(store *db.Store) error {
-		done, err := pipeline.Reprocess(ctx, store, ingest.pipeline, plan.followed(o, approveAll))
-		ingest.monitor.end()
-		switch {
-		case err != nil && ctx.Err() != nil:
-			return interruption(done.Summary, db.Gathered{})
-		case err != nil:
-			return fmt.Errorf("fill %s: %w", ingest.store, err)
-		}
-		report := studyShardReport{ingestReport: newIngestReport(ingest, done.Summary, true), IsRead: done.IsRead}
-		if report.Refused, err = rejectedFiles(ctx, store); err != nil {
-			return err
-		}
-		return report.end(w, o.json, done)
+	r := &shardRun{plan: plan, options: o, state: newStudyState(plan, o.shard)}
+	err := r.state.account(ctx, plan, func() error {
+		return r.state.inStore(ctx, func(store *db.Store) error { return r.fill(ctx, store) })
 	})
+	if r.report != nil {
+		err = errors.Join(err, r.report.print(w, o.json))
+	}
+	return err
+}
+
+// shardRun fills a study's shard.
+type shardRun struct {
+	plan    *studyPlan
+	options reprocessOptions
+	state   *studyState
+	report  *studyShardReport // nil until it is full
+}
+
+// fill fills the open store.
+func (r *shardRun) fill(ctx context.Context, store *db.Store) error {
+	ingest := r.plan.ingest
+	ingest.store = r.state.Store
+	ingest.pipeline.Shard, ingest.pipeline.Takes, ingest.pipeline.Decided = r.options.shard, r.plan.study.Takes, r.plan.decided
+	done, err := pipeline.Reprocess(ctx, store, ingest.pipeline, r.plan.followed(r.options, approveAll))
+	r.state.note(done, ingest, err == nil)
+	switch {
+	case err != nil && ctx.Err() != nil:
+		return interruption(done.Summary, db.Gathered{})
+	case err != nil:
+		return fmt.Errorf("fill %s: %w", ingest.store, err)
+	}
+	report := studyShardReport{ingestReport: newIngestReport(ingest, done.Summary, true), IsRead: done.IsRead}
+	if report.Refused, err = rejectedFiles(ctx, store); err != nil {
+		return err
+	}
+	r.report, r.state.Rejected = &report, &report.Refused
+	switch {
+	case done.Damaged > 0:
+		return fmt.Errorf("%s is damaged (records: %d)", ingest.store, done.Damaged)
+	case report.Refused > 0 || !done.Complete():
+		return errRejected
+	}
+	return nil
 }
 
 // followed is what the pipeline is told of the study.
@@ -64,27 +108,17 @@ type studyShardReport struct {
 	Refused int  `json:"rejected_in_store"`
 }
 
-// end prints the report, and returns what the run ends with.
-func (r studyShardReport) end(w io.Writer, asJSON bool, done pipeline.Reprocessed) error {
+func (r *studyShardReport) print(w io.Writer, asJSON bool) error {
 	p := &printer{w: w}
 	switch {
 	case asJSON:
-		p.err = writeJSON(w, r)
+		return writeJSON(w, r)
 	case r.IsRead:
-		p.err = r.print(w, false)
-	default:
-		p.printf("%s: no file has changed since the last run.\n", r.Store)
-		p.rejected(r.Store, r.Refused)
+		return r.ingestReport.print(w, false)
 	}
-	switch {
-	case p.err != nil:
-		return p.err
-	case done.Damaged > 0:
-		return fmt.Errorf("%s is damaged (records: %d)", r.Store, done.Damaged)
-	case r.Refused > 0 || !done.Complete():
-		return errRejected
-	}
-	return nil
+	p.printf("%s: no file has changed since the last run.\n", r.Store)
+	p.rejected(r.Store, r.Refused)
+	return p.err
 }
 
 // make makes the study's store that of its files, or of its shards.

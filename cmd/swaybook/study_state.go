@@ -9,21 +9,24 @@ import (
 	"time"
 
 	"swaybook/db"
+	"swaybook/pipeline"
 	"swaybook/pipeline/beside"
 	"swaybook/pipeline/cluster"
-	"swaybook/pipeline/study"
 )
 
 // studyState is the last run of a study, as it is printed as JSON and left for monitoring.
 type studyState struct {
-	Study   string  `json:"study"` // the name
-	File    string  `json:"file"`
-	Store   string  `json:"store"`
-	Program string  `json:"program"`
-	Run     *int64  `json:"run"` // null where it came to none
-	Started string  `json:"started"`
-	Ended   string  `json:"ended"`
-	Seconds float64 `json:"seconds"`
+	Study string `json:"study"` // the name
+	File  string `json:"file"`
+	Store string `json:"store"`
+	// Shard is the part of the study's records that the run was to fill Store with, null
+	// where that is the study's own.
+	Shard   *shardNumber `json:"shard"`
+	Program string       `json:"program"`
+	Run     *int64       `json:"run"` // null where it came to none
+	Started string       `json:"started"`
+	Ended   string       `json:"ended"`
+	Seconds float64      `json:"seconds"`
 	// Outcome is published, unchanged, held, failed or interrupted.
 	Outcome  string  `json:"outcome"`
 	ExitCode int     `json:"exit_code"`
@@ -46,6 +49,13 @@ type studyState struct {
 	Drift   *driftReport   `json:"drift"`
 	Outputs []outputReport `json:"outputs"`
 	Pruned  *pruneReport   `json:"pruned"`
+
+	file, metrics string // where it is left for monitoring, "" for nowhere
+}
+
+type shardNumber struct {
+	Number int `json:"shard"`
+	Count  int `json:"count"`
 }
 
 // The outcomes of a study's run.
@@ -57,14 +67,18 @@ const (
 	outcomeInterrupted = "interrupted"
 )
 
-// newStudyState begins the account of a run.
-func newStudyState(p *studyPlan) *studyState {
+// newStudyState begins the account of a run that fills the study's store, or that of a shard.
+func newStudyState(p *studyPlan, shard db.Shard) *studyState {
 	o := &p.ingest.pipeline
 	s := &studyState{
-		Study: p.study.Name.Value, File: p.study.Path(), Store: p.study.Store.Value, Program: o.Program,
+		Study: p.study.Name.Value, File: p.study.Path(), Program: o.Program,
 		Started: o.Started.UTC().Format(time.RFC3339Nano), Outputs: []outputReport{},
 	}
-	s.LastSuccess = lastSuccess(p.study.State.Value)
+	if shard.Count > 0 {
+		s.Shard = &shardNumber{shard.Number, shard.Count}
+	}
+	s.Store, s.file, s.metrics = p.places(shard)
+	s.LastSuccess = lastSuccess(s.file)
 	return s
 }
 
@@ -89,6 +103,53 @@ func lastSuccess(file string) *string {
 
 // maxState bounds a file of state in bytes: lists of files and codes are bounded.
 const maxState = 64 << 20
+
+// account does the work of a run, unless another one holds the store, and leaves the state of
+// what became of it. Whoever holds the store leaves its own: then Ended is empty.
+func (s *studyState) account(ctx context.Context, p *studyPlan, work func() error) error {
+	pipelined := &p.ingest.pipeline
+	lock, err := db.TakeLock(ctx, s.Store, holder(pipelined.Started))
+	if _, isHeld := errors.AsType[*db.LockedError](err); isHeld {
+		return err
+	}
+	if err == nil {
+		err = work()
+	}
+	p.ingest.monitor.end()
+	s.end(err, pipelined.Clock(), pipelined.Started)
+	err = errors.Join(err, s.leave())
+	if lock != nil {
+		err = errors.Join(err, lock.Release())
+	}
+	return err
+}
+
+// inStore opens the store for the work of a run, which is forgotten where the store does not stay.
+func (s *studyState) inStore(ctx context.Context, work func(*db.Store) error) error {
+	isGone, err := createdAt(ctx, s.Store, db.AnySolver, work)
+	if isGone {
+		s.Run = nil // nobody can ask for it any more
+	}
+	return err
+}
+
+// note takes over what a run did by these options; isWhole is false where it was cut short.
+func (s *studyState) note(done pipeline.Reprocessed, o ingestOptions, isWhole bool) {
+	s.Run, s.Edition, s.Published, s.Before = numbered(done.Run), numbered(done.Edition), numbered(done.Published), numbered(done.Before)
+	s.Unseen = newUnseenReport(done.Unseen)
+	if s.IsRead = done.IsRead; done.IsRead {
+		report := newIngestReport(o, done.Summary, isWhole)
+		s.Ingest = &report
+	}
+}
+
+// numbered is a number of a run, nil for none.
+func numbered(id int64) *int64 {
+	if id == 0 {
+		return nil
+	}
+	return &id
+}
 
 // end closes the account with what became of the run.
 func (s *studyState) end(err error, ended, started time.Time) {
@@ -117,12 +178,12 @@ func isOther(a, b *int64) bool { return a != nil && (b == nil || *a != *b) }
 
 // leave writes the state and the metrics where the study wants them. Where the state cannot
 // be written, the metrics say that the run failed.
-func (s *studyState) leave(wanted *study.Study) error {
-	err := leaveFile("state", wanted.State.Value, func(w io.Writer) error { return writeJSON(w, s) })
+func (s *studyState) leave() error {
+	err := leaveFile("state", s.file, func(w io.Writer) error { return writeJSON(w, s) })
 	if err != nil {
 		s.ExitCode, s.Outcome = exitFailed, outcomeFailed
 	}
-	return errors.Join(err, leaveFile("metrics", wanted.Metrics.Value, s.writeMetrics))
+	return errors.Join(err, leaveFile("metrics", s.metrics, s.writeMetrics))
 }
 
 // leaveFile writes a file whole.
@@ -138,17 +199,17 @@ func leaveFile(what, path string, fill func(io.Writer) error) error {
 
 // leaveFailure leaves the state of a run that came to nothing, since what its study names is
 // not there; unless another run is at work, which leaves its own.
-func (p *studyPlan) leaveFailure(ctx context.Context, cause error) (err error) {
-	lock, err := db.TakeLock(ctx, p.study.Store.Value, holder(p.ingest.pipeline.Started))
+func (p *studyPlan) leaveFailure(ctx context.Context, shard db.Shard, cause error) (err error) {
+	s := newStudyState(p, shard)
+	lock, err := db.TakeLock(ctx, s.Store, holder(p.ingest.pipeline.Started))
 	if _, isHeld := errors.AsType[*db.LockedError](err); isHeld {
 		return nil
 	}
 	if err == nil {
 		defer func() { err = errors.Join(err, lock.Release()) }()
 	}
-	s := newStudyState(p)
 	s.end(cause, p.ingest.pipeline.Clock(), p.ingest.pipeline.Started)
-	return s.leave(p.study)
+	return s.leave()
 }
 
 // print writes the account for people.
