@@ -7,15 +7,6 @@ import (
 	"slices"
 )
 
-// A computation's spectra, one a damping, follow one another: of a row k of computed these
-// are the ids of the first and of the last that there can be.
-const (
-	firstSpectrum = `256 * k.computation_id`
-	lastSpectrum  = firstSpectrum + ` + 255`
-
-	mostDampings = 256
-)
-
 // Where the inputs of what is computed are said: of components and of pairs.
 const (
 	componentInputs = `SELECT inputs FROM component_inputs WHERE record_id = ?1 AND role = ?2`
@@ -57,7 +48,7 @@ func (t *Tx) addComputed(ctx context.Context, inputs string, recordID int64, rol
 		isNew, err = t.clearLost(ctx, id)
 	}
 	if err == nil && isNew {
-		err = t.addSpectra(ctx, id, computed)
+		err = t.addSpectra(ctx, id, generationID, computed)
 	}
 	if err != nil {
 		return err
@@ -65,14 +56,14 @@ func (t *Tx) addComputed(ctx context.Context, inputs string, recordID int64, rol
 	return t.setComputed(ctx, recordID, role, generationID, id)
 }
 
-// clearLost removes what is left of a computation whose first spectrum is not there, and
-// reports whether that was so.
+// clearLost removes what is left of a computation whose spectra are not there, and reports
+// whether that was so.
 func (t *Tx) clearLost(ctx context.Context, id int64) (isLost bool, err error) {
-	found, err := t.idOf(ctx, `SELECT id FROM spectrum WHERE id = ?`, mostDampings*id)
+	found, err := t.idOf(ctx, `SELECT `+hasSpectra+` FROM (SELECT ? AS computation_id) k`, t.begun.id, id)
 	if err != nil || found != 0 {
 		return false, err
 	}
-	if err := t.exec(ctx, `DELETE FROM spectrum WHERE id BETWEEN ? AND ?`, mostDampings*id, mostDampings*id+mostDampings-1); err != nil {
+	if err := t.forgetSpectra(ctx, idList([]int64{id})); err != nil {
 		return false, fmt.Errorf("clear what was lost: %w", err)
 	}
 	for _, table := range []string{"conditioning", "conditioned_finding", "measure", "off_grid"} {
@@ -104,11 +95,9 @@ func (t *Tx) setComputed(ctx context.Context, recordID int64, role string, gener
 	return nil
 }
 
-func (t *Tx) addSpectra(ctx context.Context, computationID int64, computed Spectra) error {
-	for i, sd := range computed.sd {
-		if err := t.exec(ctx, `INSERT INTO spectrum (id, sd_m, crc32c) VALUES (?, ?, ?)`, mostDampings*computationID+int64(i), sd, sealOf(sd)); err != nil {
-			return fmt.Errorf("store spectrum: %w", err)
-		}
+func (t *Tx) addSpectra(ctx context.Context, computationID, generationID int64, computed Spectra) error {
+	if err := t.placeSpectra(ctx, computationID, generationID, computed.sd); err != nil {
+		return err
 	}
 	if c := computed.conditioning; c != nil {
 		err := t.exec(ctx, `INSERT INTO conditioning (computation_id, step_s, samples, lead_s, low_cut_hz, high_cut_hz, long_s)

@@ -3,7 +3,6 @@ package db
 import (
 	"context"
 	"crypto/sha256"
-	"database/sql"
 	"encoding/hex"
 	"fmt"
 	"hash"
@@ -181,33 +180,45 @@ func stamp(at time.Time) string {
 }
 
 // computed reads the spectra as the bytes that they are stored as, which are one for each
-// value.
+// value, tile by tile.
 func (d *digester) computed(ctx context.Context) error {
-	rows, err := d.snapshot.tx.QueryContext(ctx, `SELECT k.record_id, k.role, coalesce(x.failure, ''), s.sd_m FROM `+d.snapshot.shown("computed")+` k
-		JOIN computation x ON x.id = k.computation_id LEFT JOIN spectrum s ON s.id BETWEEN `+firstSpectrum+` AND `+lastSpectrum+` ORDER BY k.role, k.record_id, s.id`)
+	rows, err := d.snapshot.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, coalesce(x.failure, ''), s.tile_id, s.place, s.crc32c, coalesce(t.motions, 0)
+		FROM `+d.snapshot.shown("computed")+` k JOIN computation x ON x.id = k.computation_id
+		LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id ORDER BY s.tile_id, s.place`)
 	if err != nil {
 		return err
 	}
-	defer rows.Close()
-	for rows.Next() {
-		var id int64
-		var role, failure string
-		var sd sql.RawBytes
-		if err := rows.Scan(&id, &role, &failure, &sd); err != nil {
-			return err
+	type row struct {
+		location
+		placing
+		role, failure string
+	}
+	found, err := collect(rows, func(v *row) []any {
+		return []any{&v.record, &v.role, &v.computation, &v.failure, &v.placing.tile, &v.placing.place, &v.seal, &v.motions}
+	})
+	if err != nil {
+		return err
+	}
+	grid := &d.snapshot.Generation.Grid
+	tiles := &tileReader{q: d.snapshot.tx}
+	for _, v := range found {
+		var spectra []storedSpectrum
+		if l := v.of(v.location); l.tile != 0 {
+			if spectra, err = tiles.at(ctx, l, len(grid.Dampings), len(grid.PeriodsS)); err != nil {
+				return err
+			}
 		}
-		r := d.role(id, role)
-		if r.spectra == nil {
-			r.spectra = sha256.New()
-		}
-		r.failure = failure
-		if len(sd) > 0 {
-			r.dampings++
-			fmt.Fprintf(r.spectra, "%d ", len(sd))
-			r.spectra.Write(sd)
+		r := d.role(v.record, v.role)
+		r.spectra, r.failure = sha256.New(), v.failure
+		for _, s := range spectra {
+			if len(s.sd) > 0 {
+				r.dampings++
+				fmt.Fprintf(r.spectra, "%d ", len(s.sd))
+				r.spectra.Write(s.sd)
+			}
 		}
 	}
-	return rows.Err()
+	return nil
 }
 
 func (d *digester) measures(ctx context.Context) error {

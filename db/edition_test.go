@@ -50,10 +50,11 @@ func all(t *testing.T, v *Snapshot) string {
 	components, err := v.Components(t.Context(), AllDetails)
 	spectra := map[string][]string{}
 	for _, role := range []string{RoleH1, RoleH2, RoleV, RoleRotD50} {
-		err = errors.Join(err, v.Spectra(t.Context(), role, 1, Span{0, 3}, func(record int64, stored Ordinates) error {
-			spectra[role] = append(spectra[role], string(stored))
+		err = errors.Join(err, v.Spectra(t.Context(), role, 1, Span{0, 3}, func(record int64, sd []float64) error {
+			spectra[role] = append(spectra[role], fmt.Sprint(record, sd))
 			return nil
 		}))
+		slices.Sort(spectra[role])
 	}
 	var peaks []string // some of them are lost, and no JSON
 	for i := range components {

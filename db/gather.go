@@ -26,8 +26,8 @@ func (g *Gathered) Add(more Gathered) {
 	g.Damaged += more.Damaged
 }
 
-// gatherBatch is how many files, or computations, come in one transaction.
-const gatherBatch = 64
+// gatherBatch is how many files, or computations, come in one transaction: as many as a tile has.
+const gatherBatch = TileMotions
 
 // gatherBytes bounds the files of a transaction, however long they are.
 const gatherBytes = 8 << 20

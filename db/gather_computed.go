@@ -3,6 +3,7 @@ package db
 import (
 	"context"
 	"fmt"
+	"slices"
 	"strconv"
 	"strings"
 )
@@ -123,7 +124,7 @@ func (g *gathering) computation(ctx context.Context, t *Tx, c *partComputation) 
 	if c.failure != "" {
 		return t.sealComputation(ctx, id, Spectra{}, c.failure)
 	}
-	return t.addSpectra(ctx, id, c.computed)
+	return t.addSpectra(ctx, id, g.generation, c.computed)
 }
 
 // madeOf are the inputs of the computations that a pair's inputs name.
@@ -173,16 +174,10 @@ func heldComputation(ctx context.Context, q queryer, generation int64, c *partCo
 // spectra reads what was computed. Of spectra that are not what was stored the first, and all
 // behind it, are left out.
 func (p *Part) spectra(ctx context.Context, id int64) (s Spectra, err error) {
-	rows, err := p.tx.QueryContext(ctx, `SELECT sd_m, crc32c FROM spectrum WHERE id BETWEEN ? AND ? ORDER BY id`, mostDampings*id, mostDampings*id+mostDampings-1)
-	if err != nil {
+	s.sd, err = p.tiles.whole(ctx, id)
+	if lost := slices.IndexFunc(s.sd, func(sd []byte) bool { return sd == nil }); lost >= 0 {
+		s.sd = s.sd[:lost]
 		return s, err
-	}
-	found, err := collect(rows, func(v *sealedSpectrum) []any { return []any{&v.sd, &v.seal} })
-	for i := range found {
-		if found[i].open() == nil {
-			return s, err
-		}
-		s.sd = append(s.sd, found[i].sd)
 	}
 	if err == nil {
 		s.measures, err = p.measures(ctx, id)

@@ -119,6 +119,9 @@ func (t *Tx) createGrid(ctx context.Context, grid Grid) (int64, error) {
 	if len(grid.Dampings) > mostDampings {
 		return 0, fmt.Errorf("%d dampings, a store holds at most %d", len(grid.Dampings), mostDampings)
 	}
+	if len(grid.PeriodsS) > mostPeriods {
+		return 0, fmt.Errorf("%d periods, a store holds at most %d", len(grid.PeriodsS), mostPeriods)
+	}
 	id, err := t.insert(ctx, `INSERT INTO grid (hash) VALUES (?)`, grid.Hash())
 	if err != nil {
 		return 0, err

@@ -36,6 +36,7 @@ type Inspection struct {
 	newest    Edition // of a store without editions the zero value
 	published Edition
 	described map[string][]described // what components say, by the digest of their samples
+	tiles     tileReader
 
 	mutex sync.Mutex
 }
@@ -58,7 +59,7 @@ func Inspect(ctx context.Context, path string, found func(Fault), f func(*Inspec
 		return fmt.Errorf("begin reading: %w", explain(err))
 	}
 	defer tx.Rollback()
-	i := &Inspection{tx: tx}
+	i := &Inspection{tx: tx, tiles: tileReader{q: tx}}
 	i.found = func(fault Fault) {
 		i.mutex.Lock()
 		defer i.mutex.Unlock()

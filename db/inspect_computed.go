@@ -174,7 +174,7 @@ func (i *Inspection) motion(ctx context.Context, g Generation, id int64, inputs 
 	if err := i.tx.QueryRowContext(ctx, `SELECT data FROM series WHERE sha256 = ?`, digest).Scan(&m.data); err != nil {
 		return m, false, err
 	}
-	m.sd, err = i.ordinatesOf(ctx, id)
+	m.sd, err = i.tiles.whole(ctx, id)
 	return m, true, err
 }
 
@@ -218,15 +218,6 @@ func (i *Inspection) pairComponent(c *PairComponent, m *StoredMotion, azimuth, s
 	return false, nil
 }
 
-// ordinatesOf are the spectra of a computation, nil for each that is not what was stored.
-func (i *Inspection) ordinatesOf(ctx context.Context, computationID int64) ([][]byte, error) {
-	rows, err := i.tx.QueryContext(ctx, `SELECT crc32c, sd_m FROM spectrum WHERE id BETWEEN ? AND ? ORDER BY id`, mostDampings*computationID, mostDampings*computationID+mostDampings-1)
-	if err != nil {
-		return nil, err
-	}
-	return openSpectra(rows)
-}
-
 // Stored returns what the store has of a computation; maximum has that of rotd100, of a
 // pair.
 func (i *Inspection) Stored(ctx context.Context, c InspectedComputation) (s, maximum Spectra, err error) {
@@ -238,7 +229,7 @@ func (i *Inspection) Stored(ctx context.Context, c InspectedComputation) (s, max
 }
 
 func (i *Inspection) spectra(ctx context.Context, id int64) (s Spectra, err error) {
-	if s.sd, err = i.ordinatesOf(ctx, id); err != nil {
+	if s.sd, err = i.tiles.whole(ctx, id); err != nil {
 		return s, err
 	}
 	rows, err := i.tx.QueryContext(ctx, `SELECT name, value FROM measure WHERE computation_id = ?`, id)

@@ -10,19 +10,6 @@ import (
 
 // Stored values that are checked whole, whatever the sample.
 
-// Lengths checks that every computation that has not failed has all of its spectra, each
-// with a value for every period, and both of a pair.
-func (i *Inspection) Lengths(ctx context.Context) error {
-	return i.lookFor(ctx, "spectrum", `WITH has AS (
-			SELECT x.id, x.inputs, g.grid_id, count(s.id) AS n, max(s.id) - 256 * x.id + 1 AS upto, min(length(s.sd_m)) AS least, max(length(s.sd_m)) AS most
-			FROM computation x JOIN generation g ON g.id = x.generation_id LEFT JOIN spectrum s ON s.id BETWEEN 256 * x.id AND 256 * x.id + 255
-			WHERE x.failure IS NULL GROUP BY x.id
-		), size AS (SELECT g.id, (SELECT count(*) FROM grid_damping d WHERE d.grid_id = g.id) AS dampings, (SELECT count(*) FROM grid_period p WHERE p.grid_id = g.id) AS periods FROM grid g)
-		SELECT coalesce((SELECT r.code || ' ' || k.role || ': ' FROM computed k JOIN record r ON r.id = k.record_id WHERE k.computation_id = h.id), '') ||
-			'computation ' || h.id || ' has spectra of ' || h.n || ' dampings and of ' || coalesce(least, 0) || ' to ' || coalesce(most, 0) || ' bytes, want ' || z.dampings || ' of ' || 8 * z.periods
-		FROM has h JOIN size z ON z.id = h.grid_id WHERE h.n <> z.dampings OR h.upto <> h.n OR h.least <> 8 * z.periods OR h.most <> h.least`)
-}
-
 // OffGrid checks what is kept off the grid against its checksums, and returns how many rows
 // there are.
 func (i *Inspection) OffGrid(ctx context.Context) (rows int, err error) {
@@ -53,30 +40,8 @@ func (i *Inspection) OffGrid(ctx context.Context) (rows int, err error) {
 	return rows, err
 }
 
-// Seals compares all spectra with their checksums.
+// Seals compares what is computed beside spectra with its checksums.
 func (i *Inspection) Seals(ctx context.Context) error {
-	type row struct {
-		id   int64
-		sd   sql.RawBytes
-		seal int64
-	}
-	var damaged []int64
-	err := look(ctx, i, "spectrum", `SELECT id, crc32c, sd_m FROM spectrum`, nil, func(v *row) []any { return []any{&v.id, &v.seal, &v.sd} }, func(v *row) {
-		if (sealedSpectrum{v.sd, v.seal}).open() == nil {
-			damaged = append(damaged, v.id)
-		}
-	})
-	for _, id := range damaged {
-		i.found(i.Of(ctx, InspectedComputation{ID: id / mostDampings}, "spectrum", fmt.Sprintf("damping %d: not what was stored; questions leave it out", id%mostDampings+1)))
-	}
-	if err != nil {
-		return err
-	}
-	return i.computationSeals(ctx)
-}
-
-// computationSeals compares what is computed beside spectra with its checksums.
-func (i *Inspection) computationSeals(ctx context.Context) error {
 	type row struct {
 		id   int64
 		kind string
@@ -189,16 +154,14 @@ func (i *Inspection) powers(ctx context.Context) error {
 func (i *Inspection) compareView(ctx context.Context, v *Snapshot, codes map[int64]string, role string, position int, damping float64, nth int64) (compared int, err error) {
 	periods := v.Generation.Grid.PeriodsS
 	want, expected := map[string][]float64{}, 0
-	err = v.Spectra(ctx, role, position, Span{0, len(periods)}, func(id int64, stored Ordinates) error {
-		if id%nth != 0 {
-			return nil
+	err = v.Spectra(ctx, role, position, Span{0, len(periods)}, func(id int64, sd []float64) error {
+		switch {
+		case id%nth != 0:
+		case sd == nil:
+			i.found(Fault{Table: "tile_part", Record: codes[id], Role: role, Text: "not what was stored"})
+		default:
+			want[codes[id]], expected = slices.Clone(sd), expected+len(sd)
 		}
-		sd := make([]float64, len(periods))
-		if stored.Decode(sd) != nil {
-			i.found(Fault{Table: "spectrum", Record: codes[id], Role: role, Text: "not what was stored"})
-			return nil
-		}
-		want[codes[id]], expected = sd, expected+len(sd)
 		return nil
 	})
 	if ctx.Err() != nil {

@@ -6,7 +6,7 @@ import (
 	"math"
 )
 
-// OrdinateWidth is the number of bytes of one value in spectrum.sd_m. The view in the schema
+// OrdinateWidth is the number of bytes of one value in tile_part.sd_m. The view in the schema
 // cuts by the same width.
 const OrdinateWidth = 8
 

@@ -90,7 +90,8 @@ func TestDoublesOfDecimals(t *testing.T) {
 	}
 }
 
-// viewStore is a store of one spectrum, which has these SD at as many periods.
+// viewStore is a store of three spectra, the second of which, of record R, has these SD at as
+// many periods.
 func viewStore(t *testing.T, sd []float64) *Store {
 	t.Helper()
 	s := newStore(t)
@@ -107,7 +108,9 @@ func viewStore(t *testing.T, sd []float64) *Store {
 		if err != nil {
 			return err
 		}
-		return errors.Join(add(ctx, tx, g, "R", RoleH1, 1), tx.exec(ctx, `UPDATE spectrum SET sd_m = ?`, encodeOrdinates(nil, sd)))
+		err = errors.Join(add(ctx, tx, g, "P", RoleH1, 1), add(ctx, tx, g, "R", RoleH1, 1), add(ctx, tx, g, "S", RoleH1, 1))
+		tx.begun.motions[1][0] = encodeOrdinates(nil, sd)
+		return err
 	})
 	return s
 }
@@ -130,7 +133,7 @@ func sdOf(t *testing.T, q queryer, query string) []float64 {
 func TestViewHasTheStoredDoubles(t *testing.T) {
 	want := anySD(5000, 7)
 	s := viewStore(t, want)
-	if text := firstUnlike(sdOf(t, s.read, `SELECT sd_m FROM ordinate ORDER BY period_s`), want); text != "" {
+	if text := firstUnlike(sdOf(t, s.read, `SELECT sd_m FROM ordinate WHERE record = 'R' ORDER BY period_s`), want); text != "" {
 		t.Error(text)
 	}
 	client, err := exec.LookPath("sqlite3")
@@ -140,7 +143,7 @@ func TestViewHasTheStoredDoubles(t *testing.T) {
 	copied := filepath.Join(t.TempDir(), "copied.db")
 	command := exec.CommandContext(t.Context(), client, copied)
 	command.Env = append(command.Environ(), "HOME="+t.TempDir())
-	command.Stdin = strings.NewReader(fmt.Sprintf("ATTACH '%s' AS store; CREATE TABLE copied AS SELECT period_s, sd_m FROM store.ordinate;", s.path))
+	command.Stdin = strings.NewReader(fmt.Sprintf("ATTACH '%s' AS store; CREATE TABLE copied AS SELECT period_s, sd_m FROM store.ordinate WHERE record = 'R';", s.path))
 	if text, err := command.CombinedOutput(); err != nil {
 		t.Fatalf("%v: %s", err, text)
 	}
@@ -154,17 +157,29 @@ func TestViewHasTheStoredDoubles(t *testing.T) {
 	}
 }
 
-// Of a spectrum that is cut the view has what is whole, and nothing instead of the rest.
-func TestViewOfACutSpectrum(t *testing.T) {
+// Of a part that is cut the view has what is whole, and nothing instead of the rest, nor of what
+// is lost.
+func TestViewOfDamagedParts(t *testing.T) {
 	want := anySD(20, 8)
-	s := viewStore(t, want)
-	for _, c := range []struct{ bytes, values int }{{20 * OrdinateWidth, 20}, {20*OrdinateWidth - 1, 19}, {12*OrdinateWidth + 7, 12}, {0, 0}} {
-		if _, err := s.write.Exec(`UPDATE spectrum SET sd_m = substr(sd_m, 1, ?)`, c.bytes); err != nil {
+	const motions, place = 3, 1
+	last := partID(1, 0, 2) // of the periods from 16 on
+	for damage, values := range map[string]int{
+		fmt.Sprintf(`UPDATE tile_part SET sd_m = substr(sd_m, 1, %d) WHERE id = %d`, OrdinateWidth*(3*motions+place+1), last):   20,
+		fmt.Sprintf(`UPDATE tile_part SET sd_m = substr(sd_m, 1, %d) WHERE id = %d`, OrdinateWidth*(3*motions+place+1)-1, last): 19,
+		fmt.Sprintf(`UPDATE tile_part SET sd_m = substr(sd_m, 1, %d) WHERE id = %d`, OrdinateWidth*(motions+place), last):       17,
+		fmt.Sprintf(`DELETE FROM tile_part WHERE id = %d`, last):                                                                16,
+		fmt.Sprintf(`UPDATE tile_part SET sd_m = CAST(substr(sd_m, 1, %d) || x'ffffffffffffffff' || substr(sd_m, %d) AS BLOB) WHERE id = %d`,
+			OrdinateWidth*(3*motions+place), OrdinateWidth*(3*motions+place+1)+1, last): 19,
+		`UPDATE spectrum SET place = 3 WHERE place = 1`: 0,
+		`DELETE FROM tile`: 0,
+	} {
+		s := viewStore(t, want)
+		if _, err := s.write.Exec(damage); err != nil {
 			t.Fatal(err)
 		}
-		got := sdOf(t, s.read, `SELECT sd_m FROM ordinate ORDER BY period_s`)
-		if text := firstUnlike(got, want[:c.values]); text != "" || len(got) != c.values {
-			t.Errorf("of %d bytes %d values: %s", c.bytes, len(got), text)
+		got := sdOf(t, s.read, `SELECT sd_m FROM ordinate WHERE record = 'R' ORDER BY period_s`)
+		if text := firstUnlike(got, want[:values]); text != "" || len(got) != values {
+			t.Errorf("%s: %d values, want %d: %s", damage, len(got), values, text)
 		}
 	}
 }

@@ -97,8 +97,9 @@ func (s *Store) ReadPair(ctx context.Context, g Generation, p Pair) (first, seco
 		return first, second, fmt.Errorf("begin reading: %w", explain(err))
 	}
 	defer tx.Rollback()
-	if first, err = readMotion(ctx, tx, g, p.First.ID); err == nil {
-		second, err = readMotion(ctx, tx, g, p.Second.ID)
+	tiles := &tileReader{q: tx}
+	if first, err = readMotion(ctx, tiles, g, p.First.ID); err == nil {
+		second, err = readMotion(ctx, tiles, g, p.Second.ID)
 	}
 	if err != nil {
 		return first, second, fmt.Errorf("read pair of record %s: %w", p.Code, err)
@@ -117,30 +118,18 @@ func readSeries(ctx context.Context, q queryer, shown tables, condition string, 
 	return m, nil
 }
 
-func readMotion(ctx context.Context, tx *sql.Tx, g Generation, componentID int64) (StoredMotion, error) {
-	m, err := readSeries(ctx, tx, working(g.ID), `c.id = ?`, componentID)
+func readMotion(ctx context.Context, tiles *tileReader, g Generation, componentID int64) (StoredMotion, error) {
+	m, err := readSeries(ctx, tiles.q, working(g.ID), `c.id = ?`, componentID)
 	if err != nil {
 		return m, err
 	}
 	m.periods, m.dampings = len(g.Grid.PeriodsS), len(g.Grid.Dampings)
-	rows, err := tx.QueryContext(ctx, `SELECT s.crc32c, s.sd_m FROM component c
-		JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = ?
-		JOIN spectrum s ON s.id BETWEEN `+firstSpectrum+` AND `+lastSpectrum+`
-		WHERE c.id = ? ORDER BY s.id`, g.ID, componentID)
-	if err != nil {
-		return m, err
+	computation, err := idOf(ctx, tiles.q, `SELECT k.computation_id FROM component c JOIN computed k ON k.record_id = c.record_id AND k.role = c.role AND k.generation_id = ?
+		WHERE c.id = ?`, g.ID, componentID)
+	if err == nil && computation != 0 {
+		m.sd, err = tiles.whole(ctx, computation)
 	}
-	m.sd, err = openSpectra(rows)
 	return m, err
-}
-
-// openSpectra reads spectra, nil for each that is not what was stored.
-func openSpectra(rows *sql.Rows) (out [][]byte, err error) {
-	found, err := collect(rows, func(s *sealedSpectrum) []any { return []any{&s.seal, &s.sd} })
-	for _, s := range found {
-		out = append(out, s.open())
-	}
-	return out, err
 }
 
 // DecodeMotion returns the motion as it was delivered, its samples checked against their

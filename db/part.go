@@ -19,6 +19,7 @@ type Part struct {
 	path      string
 	handle    *sql.DB
 	tx        session
+	tiles     tileReader
 	sightings []byte // digest of what it saw
 }
 
@@ -48,6 +49,7 @@ func openPart(ctx context.Context, path string) (*Part, error) {
 	tx, err := handle.BeginTx(ctx, nil)
 	if err == nil {
 		p.tx = newSession(tx)
+		p.tiles.q = p.tx
 		err = p.describe(ctx)
 	}
 	if err != nil {

@@ -135,7 +135,12 @@ func (s *Store) inBatches(ctx context.Context, size int, query string, f func(tx
 func (t *Tx) pruneComputations(ctx context.Context, ids string, p *Pruned) error {
 	const these = ` IN (SELECT value FROM json_each(?))`
 	var uncounted int
-	err := t.remove(ctx, &p.Spectra, `spectrum WHERE id IN (SELECT s.id FROM json_each(?) k CROSS JOIN spectrum s ON s.id BETWEEN 256 * k.value AND 256 * k.value + 255)`, ids)
+	spectra, err := t.idOf(ctx, `SELECT count(*) FROM json_each(?) k JOIN spectrum s ON s.computation_id = k.value JOIN computation x ON x.id = k.value
+		JOIN generation g ON g.id = x.generation_id JOIN grid_damping d ON d.grid_id = g.grid_id`, ids)
+	if err == nil {
+		p.Spectra += int(spectra)
+		err = t.forgetSpectra(ctx, ids)
+	}
 	for _, from := range []struct {
 		n     *int
 		table string

@@ -31,7 +31,9 @@ func unused(t *testing.T, s *Store) map[string]int {
 	out := map[string]int{
 		"computations": count(t, s, `SELECT count(*) FROM computation WHERE id NOT IN (SELECT computation_id FROM computed) AND id NOT IN (SELECT computation_id FROM edition_computed)`),
 		"series":       count(t, s, `SELECT count(*) FROM series WHERE id NOT IN (SELECT series_id FROM component WHERE series_id NOT NULL UNION SELECT series_id FROM edition_component WHERE series_id NOT NULL)`),
-		"spectra":      count(t, s, `SELECT count(*) FROM spectrum WHERE id / 256 NOT IN (SELECT id FROM computation)`),
+		"spectra":      count(t, s, `SELECT count(*) FROM spectrum WHERE computation_id NOT IN (SELECT id FROM computation)`),
+		"tiles":        count(t, s, `SELECT count(*) FROM tile WHERE id NOT IN (SELECT tile_id FROM spectrum)`),
+		"parts":        count(t, s, `SELECT count(*) FROM tile_part WHERE id >> 20 NOT IN (SELECT id FROM tile)`),
 		"measures":     count(t, s, `SELECT count(*) FROM measure WHERE computation_id NOT IN (SELECT id FROM computation)`),
 		"recipes":      count(t, s, `SELECT count(*) FROM recipe WHERE id NOT IN (SELECT recipe_id FROM generation)`),
 		"grids":        count(t, s, `SELECT count(*) FROM grid_period WHERE grid_id NOT IN (SELECT grid_id FROM generation)`),
@@ -148,7 +150,7 @@ func TestPruneCanBeCutShort(t *testing.T) {
 		t.Fatal(err)
 	}
 	sizes := func(s *Store) string {
-		return fmt.Sprint(count(t, s, `SELECT count(*) FROM computation`), count(t, s, `SELECT count(*) FROM spectrum`), count(t, s, `SELECT count(*) FROM edition_computed`), count(t, s, `SELECT count(*) FROM edition_component`))
+		return fmt.Sprint(count(t, s, `SELECT count(*) FROM computation`), count(t, s, `SELECT count(*) FROM spectrum`), count(t, s, `SELECT count(*) FROM tile_part`), count(t, s, `SELECT count(*) FROM edition_computed`), count(t, s, `SELECT count(*) FROM edition_component`))
 	}
 	stops := []func(s *Store) error{
 		func(s *Store) error {
@@ -223,5 +225,32 @@ func TestShrink(t *testing.T) {
 	defer reader.Close()
 	if _, err := reader.Prune(t.Context(), 1); err == nil {
 		t.Error("a store that is open for reading was pruned")
+	}
+}
+
+// A tile goes when nobody has spectra in it any more: what others have in it keeps it whole.
+func TestPruneKeepsSharedTiles(t *testing.T) {
+	s, _ := tiledStore(t, 3, 2)
+	viewed(t, s, func(*Snapshot) {}) // makes an edition
+	prune := func(condition string) (p Pruned) {
+		changed(t, s, func(ctx context.Context, tx *Tx) error {
+			var ids string
+			err := tx.tx.QueryRowContext(ctx, `SELECT json_group_array(computation_id) FROM spectrum WHERE `+condition).Scan(&ids)
+			for _, table := range []string{"computed", "edition_computed"} {
+				err = errors.Join(err, tx.exec(ctx, `DELETE FROM `+table+` WHERE computation_id IN (SELECT value FROM json_each(?))`, ids))
+			}
+			return errors.Join(err, tx.pruneComputations(ctx, ids, &p))
+		})
+		return p
+	}
+	parts := count(t, s, `SELECT count(*) FROM tile_part`)
+	if p := prune(`place = 1`); p.Spectra != 6 || p.Computations != 2 || fmt.Sprint(tilesOf(t, s)) != "[6 4]" || count(t, s, `SELECT count(*) FROM tile_part`) != parts {
+		t.Errorf("%+v, tiles of %v motions", p, tilesOf(t, s))
+	}
+	if p := prune(`tile_id = 1`); p.Spectra != 15 || p.Computations != 5 || fmt.Sprint(tilesOf(t, s)) != "[4]" || count(t, s, `SELECT count(*) FROM tile_part`) != parts/2 {
+		t.Errorf("%+v, tiles of %v motions", p, tilesOf(t, s))
+	}
+	if left := unused(t, s); len(left) > 0 {
+		t.Errorf("left behind: %v", left)
 	}
 }

@@ -28,6 +28,7 @@ type Snapshot struct {
 	known    sync.Mutex
 	isWhole  map[string]bool            // tables that were looked at
 	computed map[string]map[int64]int64 // computations by role and record, of roles that were read
+	places   map[string][]location      // of spectra by role, of roles that were read
 
 	Edition    Edition
 	Generation Generation // the edition's
@@ -92,7 +93,7 @@ func snapshotOf(ctx context.Context, tx *sql.Tx, missing absent, condition strin
 	if err != nil {
 		return nil, fmt.Errorf("read edition: %w", err)
 	}
-	v := &Snapshot{tx: tx, shown: ofEdition(e.ID, e.ID == newest), Edition: e, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}}
+	v := &Snapshot{tx: tx, shown: ofEdition(e.ID, e.ID == newest), Edition: e, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}, places: map[string][]location{}}
 	v.Generation, err = generation(ctx, tx, e.GenerationID)
 	return v, err
 }

@@ -18,20 +18,6 @@ var castagnoli = crc32.MakeTable(crc32.Castagnoli)
 // has become another.
 func sealOf(data []byte) int64 { return int64(crc32.Checksum(data, castagnoli)) }
 
-// sealedSpectrum are ordinates as they are stored, with their checksum.
-type sealedSpectrum struct {
-	sd   []byte
-	seal int64
-}
-
-// open returns the ordinates, nil where they are not what was stored.
-func (s sealedSpectrum) open() []byte {
-	if sealOf(s.sd) != s.seal {
-		return nil
-	}
-	return s.sd
-}
-
 // sealer makes checksums of rows, in room of its own.
 type sealer []byte
 

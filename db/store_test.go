@@ -168,10 +168,10 @@ func TestComponentsAndSpectraComeBack(t *testing.T) {
 		}
 		for _, periods := range []Span{{0, 3}, {1, 2}, {2, 3}, {0, 2}} {
 			var ids []int64
-			sd := make([]float64, periods.To-periods.From)
-			err = v.Spectra(t.Context(), RoleH2, 1, periods, func(id int64, stored Ordinates) error {
-				ids = append(ids, id)
-				return stored.Decode(sd)
+			var sd []float64
+			err = v.Spectra(t.Context(), RoleH2, 1, periods, func(id int64, read []float64) error {
+				ids, sd = append(ids, id), slices.Clone(read)
+				return nil
 			})
 			want := []float64{11, 12, 13}[periods.From:periods.To]
 			if err != nil || !slices.Equal(ids, []int64{cs[1].RecordID}) || !slices.Equal(sd, want) {
@@ -238,10 +238,9 @@ func TestRolesChangePlaces(t *testing.T) {
 		if cs[0].Role != RoleH1 || cs[0].PGA != 2 || cs[0].Label != RoleH2 {
 			t.Errorf("first component = %+v", cs[0])
 		}
-		return v.Spectra(t.Context(), RoleH1, 0, Span{0, 1}, func(_ int64, stored Ordinates) error {
-			sd := []float64{0}
-			if err := stored.Decode(sd); err != nil || sd[0] != 2 {
-				t.Errorf("sd = %v, %v", sd, err)
+		return v.Spectra(t.Context(), RoleH1, 0, Span{0, 1}, func(_ int64, sd []float64) error {
+			if !slices.Equal(sd, []float64{2}) {
+				t.Errorf("sd = %v, want 2", sd)
 			}
 			return nil
 		})

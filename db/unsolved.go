@@ -17,7 +17,7 @@ type Unsolved struct {
 // Unsolved returns the components that lack their spectra in the generation and are not
 // known to fail, in the order in which they were stored.
 func (s *Store) Unsolved(ctx context.Context, generationID int64) ([]Unsolved, error) {
-	return unsolved(ctx, s.read, working(generationID), "AND x.failure IS NULL")
+	return unsolved(ctx, s.read, working(generationID), 0, "AND x.failure IS NULL")
 }
 
 // Unsolved returns all components that lack their spectra in the snapshot's generation. As a
@@ -38,23 +38,23 @@ func (s *Snapshot) Unsolved(ctx context.Context) ([]Unsolved, error) {
 	if err := s.wholeFailures(ctx); err != nil {
 		return nil, err
 	}
-	return unsolved(ctx, s.tx, s.shown, "")
+	return unsolved(ctx, s.tx, s.shown, 0, "")
 }
 
 // IsUnsolved reports whether the record still holds this very component, and lacks its
 // spectra.
 func (t *Tx) IsUnsolved(ctx context.Context, generationID int64, u Unsolved) (bool, error) {
-	found, err := unsolved(ctx, t.tx, working(generationID), "AND c.id = ?", u.ComponentID)
+	found, err := unsolved(ctx, t.tx, working(generationID), t.begun.id, "AND c.id = ?", u.ComponentID)
 	return len(found) == 1 && found[0] == u, err
 }
 
-// unsolved looks for what is computed of each component, and whether its first spectrum is
-// there: what was lost is computed again.
-func unsolved(ctx context.Context, q queryer, shown tables, condition string, args ...any) ([]Unsolved, error) {
+// unsolved looks for what is computed of each component, and whether its spectra are there, or
+// in the tile that is begun: what was lost is computed again.
+func unsolved(ctx context.Context, q queryer, shown tables, begun int64, condition string, args ...any) ([]Unsolved, error) {
 	rows, err := q.QueryContext(ctx, `SELECT c.id, c.record_id, r.code, c.role, coalesce(x.failure, '') FROM `+shown("component")+` c JOIN `+shown("record")+` r ON r.id = c.record_id
 		LEFT JOIN `+shown("computed")+` k ON k.record_id = c.record_id AND k.role = c.role
 		LEFT JOIN computation x ON x.id = k.computation_id
-		WHERE (x.id IS NULL OR x.failure IS NOT NULL OR NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.id = `+firstSpectrum+`)) `+condition+` ORDER BY c.id`, args...)
+		WHERE (x.id IS NULL OR x.failure IS NOT NULL OR NOT `+hasSpectra+`) `+condition+` ORDER BY c.id`, append([]any{begun}, args...)...)
 	if err != nil {
 		return nil, fmt.Errorf("find components without spectrum: %w", err)
 	}

@@ -11,7 +11,8 @@ import (
 
 // Tx is one write transaction.
 type Tx struct {
-	tx session
+	tx    session
+	begun tileBegun
 }
 
 var errReading = errors.New("store is open for reading only")
@@ -36,7 +37,11 @@ func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) (err error)
 		return fmt.Errorf("begin transaction: %w", err)
 	}
 	defer tx.Rollback()
-	if err := f(&Tx{tx: newSession(tx)}); err != nil {
+	t := &Tx{tx: newSession(tx)}
+	if err := f(t); err != nil {
+		return err
+	}
+	if err := t.writeTile(ctx); err != nil {
 		return err
 	}
 	if err := tx.Commit(); err != nil {

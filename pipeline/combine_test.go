@@ -113,14 +113,17 @@ func TestDamagedShards(t *testing.T) {
 	other := t.TempDir() // of which nothing was computed that the shard has
 	put(t, other, "EV1_ST50000.AT2", at2("Invented", "Site 50", "000", 500))
 	former := shardsOf(t, 1, options(other))
-	for _, c := range []struct{ damage, says string }{
-		{`UPDATE spectrum SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT max(id) FROM spectrum)`, ""},
-		{`UPDATE spectrum SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT min(id) FROM spectrum)`, ""},
-		{`UPDATE measure SET value = value * 1.5 WHERE computation_id = (SELECT min(id) FROM computation) AND name = 'pga_m_s2'`, ""},
-		{`UPDATE series SET data = CAST(substr(data, 1, length(data) - 1) || x'00' AS BLOB) WHERE id = (SELECT min(id) FROM series)`, "samples of"},
-		{`UPDATE intake SET said = CAST(said || x'00' AS BLOB) WHERE id = (SELECT min(id) FROM intake)`, "intake of"},
-		{`UPDATE intake_events SET said = CAST(said || x'00' AS BLOB)`, "events of documents"},
-		{`UPDATE run SET outcome = 'interrupted'`, "did not come to its end"},
+	// damaged counts what a query finds among where spectra are: a tile is left behind whole.
+	const one = `computation_id = 1`
+	for _, c := range []struct{ damage, says, damaged string }{
+		{`UPDATE tile_part SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT max(id) FROM tile_part)`, "", `tile_id = (SELECT max(id) FROM tile)`},
+		{`UPDATE tile_part SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT min(id) FROM tile_part)`, "", `tile_id = 1`},
+		{`UPDATE spectrum SET place = 99 WHERE computation_id = (SELECT max(computation_id) FROM spectrum)`, "", one},
+		{`UPDATE measure SET value = value * 1.5 WHERE computation_id = (SELECT min(id) FROM computation) AND name = 'pga_m_s2'`, "", one},
+		{`UPDATE series SET data = CAST(substr(data, 1, length(data) - 1) || x'00' AS BLOB) WHERE id = (SELECT min(id) FROM series)`, "samples of", ""},
+		{`UPDATE intake SET said = CAST(said || x'00' AS BLOB) WHERE id = (SELECT min(id) FROM intake)`, "intake of", ""},
+		{`UPDATE intake_events SET said = CAST(said || x'00' AS BLOB)`, "events of documents", ""},
+		{`UPDATE run SET outcome = 'interrupted'`, "did not come to its end", ""},
 	} {
 		shards := shardsOf(t, 1, opts)
 		execute(t, shards[0], c.damage)
@@ -147,8 +150,8 @@ func TestDamagedShards(t *testing.T) {
 			if got := dump(t, store); !slices.Equal(got, want) {
 				t.Errorf("%s: another result", c.damage)
 			}
-			if done.Gathered.Damaged != 1 {
-				t.Errorf("%s: %d damaged results, want 1", c.damage, done.Gathered.Damaged)
+			if want := countIn(t, shards[0], `SELECT count(*) FROM spectrum WHERE `+c.damaged); done.Gathered.Damaged != want || want == 0 {
+				t.Errorf("%s: %d damaged results, want %d", c.damage, done.Gathered.Damaged, want)
 			}
 		}
 	}

@@ -6,12 +6,14 @@ import (
 	"time"
 
 	"golang.org/x/sync/errgroup"
+
+	"swaybook/db"
 )
 
 // A batch is one transaction: large enough that its fixed cost disappears,
-// small enough that a crash loses about a second's work.
+// small enough that a crash loses about a second's work. Its spectra fill a tile.
 const (
-	batchWeight = 64 // components, or records that were rotated
+	batchWeight = db.TileMotions // components, or records that were rotated
 	batchTime   = time.Second
 )
 

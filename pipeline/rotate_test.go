@@ -161,10 +161,9 @@ func stored(t *testing.T, store *db.Store, role string) (out []float64) {
 	t.Helper()
 	err := store.View(t.Context(), func(v *db.Snapshot) error {
 		for d := range v.Generation.Grid.Dampings {
-			periods := len(v.Generation.Grid.PeriodsS)
-			err := v.Spectra(t.Context(), role, d, db.Span{To: periods}, func(_ int64, stored db.Ordinates) error {
-				out = append(out, make([]float64, periods)...)
-				return stored.Decode(out[len(out)-periods:])
+			err := v.Spectra(t.Context(), role, d, db.Span{To: len(v.Generation.Grid.PeriodsS)}, func(_ int64, sd []float64) error {
+				out = append(out, sd...)
+				return nil
 			})
 			if err != nil {
 				return err

@@ -11,6 +11,7 @@ import (
 	"path/filepath"
 	"reflect"
 	"runtime"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -118,8 +119,8 @@ func shown(t *testing.T, store *db.Store) []string {
 		for d := range v.Generation.Grid.Dampings {
 			for _, role := range []string{db.RoleH1, db.RoleH2, db.RoleV, db.RoleRotD50, db.RoleRotD100} {
 				whole := db.Span{To: len(v.Generation.Grid.PeriodsS)}
-				err := v.Spectra(t.Context(), role, d, whole, func(record int64, sd db.Ordinates) error {
-					out = append(out, fmt.Sprint(d, code[record], role, string(sd)))
+				err := v.Spectra(t.Context(), role, d, whole, func(record int64, sd []float64) error {
+					out = append(out, fmt.Sprint(d, code[record], role, sd))
 					return nil
 				})
 				if err != nil {
@@ -132,6 +133,7 @@ func shown(t *testing.T, store *db.Store) []string {
 	if err != nil {
 		t.Fatal(err)
 	}
+	slices.Sort(out)
 	return out
 }
 

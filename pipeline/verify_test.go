@@ -151,6 +151,20 @@ func execute(t *testing.T, path string, statements ...string) {
 	}
 }
 
+// countIn is the number that a query gives.
+func countIn(t *testing.T, path, query string) (n int) {
+	t.Helper()
+	raw, err := sql.Open("sqlite", "file:"+path+"?mode=ro")
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer raw.Close()
+	if err := raw.QueryRowContext(t.Context(), query).Scan(&n); err != nil {
+		t.Fatal(err)
+	}
+	return n
+}
+
 // contentOf closes the store and returns its file.
 func contentOf(t *testing.T, store *db.Store) []byte {
 	t.Helper()
@@ -196,9 +210,12 @@ func TestDigestTellsEveryChange(t *testing.T) {
 	run(t, store, regionOptions(t, dir, 2, files...))
 	want, whole := digestOf(t, store), contentOf(t, store)
 	changes := []string{
-		`UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT min(id) FROM spectrum)`,
-		`UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT max(id) FROM spectrum)`,
-		`DELETE FROM spectrum WHERE id = (SELECT max(id) FROM spectrum)`,
+		`UPDATE tile_part SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT min(id) FROM tile_part)`,
+		`UPDATE tile_part SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT max(id) FROM tile_part)`,
+		`DELETE FROM tile_part WHERE id = (SELECT max(id) FROM tile_part)`,
+		`DELETE FROM spectrum WHERE computation_id = 1`,
+		`UPDATE spectrum SET place = 99 WHERE computation_id = 1`,
+		`UPDATE tile SET motions = motions + 1 WHERE id = 1`,
 		`UPDATE measure SET value = value * 1.0000000000000002 WHERE computation_id = 1 AND name = 'pga_m_s2'`,
 		`DELETE FROM measure WHERE computation_id = 1 AND name = 'arias_m_s'`,
 		`UPDATE conditioning SET lead_s = lead_s + 1 WHERE computation_id = (SELECT min(computation_id) FROM conditioning)`,
@@ -263,11 +280,22 @@ func TestVerifyFindsFaults(t *testing.T) {
 		{"series", `UPDATE series SET data = cast(data || x'7f7f' AS BLOB) WHERE id = 2`},
 		{"series", `UPDATE series SET sha256 = 'another' WHERE id = 2`},
 		{"series", `INSERT INTO series (sha256, data) VALUES ('of nobody', x'00')`},
-		{"spectrum", `UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = 256`},
-		{"spectrum", `UPDATE spectrum SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = 256 * ` + pair},
-		{"spectrum", `UPDATE spectrum SET sd_m = substr(sd_m, 2) WHERE id = 257`},
-		{"spectrum", `DELETE FROM spectrum WHERE id = 257`},
-		{"spectrum", `INSERT INTO spectrum (id, crc32c, sd_m) VALUES (256 * 99999, 0, x'20')`},
+		{"tile_part", `UPDATE tile_part SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = 1 << 20`},
+		{"tile_part", `UPDATE tile_part SET sd_m = cast(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (SELECT tile_id << 20 FROM spectrum WHERE computation_id = ` + pair + `)`},
+		{"tile_part", `UPDATE tile_part SET (sd_m, crc32c) = (SELECT d, crc32c(d) FROM (SELECT substr(sd_m, 2) AS d)) WHERE id = 1 << 20`},
+		{"tile_part", `UPDATE tile_part SET (sd_m, crc32c) = (SELECT d, crc32c(d) FROM (SELECT CAST(x'ffffffffffffffff' || substr(sd_m, 9) AS BLOB) AS d)) WHERE id = 1 << 20`},
+		{"tile_part", `DELETE FROM tile_part WHERE id = (1 << 20) + (1 << 12)`},
+		{"tile_part", `INSERT INTO tile_part SELECT id + 4000, sd_m, crc32c FROM tile_part WHERE id = 1 << 20`},
+		{"tile_part", `INSERT INTO tile_part SELECT id + (99999 << 20), sd_m, crc32c FROM tile_part WHERE id = 1 << 20`},
+		{"tile", `INSERT INTO tile (id, motions) VALUES (99999, 1)`},
+		{"tile", `INSERT INTO computation SELECT 99999, generation_id + 1, inputs, failure FROM computation WHERE id = 1; INSERT INTO spectrum VALUES (99999, 1, 62, 0)`},
+		{"tile_part", `UPDATE tile SET motions = motions + 1 WHERE id = 1`},
+		{"spectrum", `DELETE FROM tile WHERE id = 1`},
+		{"spectrum", `DELETE FROM spectrum WHERE computation_id = 1`},
+		{"spectrum", `UPDATE spectrum SET place = 62 WHERE computation_id = 1`},
+		{"spectrum", `UPDATE spectrum SET (place, crc32c) = (62, crc32c(1, tile_id, 62)) WHERE computation_id = 1`},
+		{"spectrum", `INSERT INTO spectrum (computation_id, tile_id, place, crc32c) VALUES (99999, 1, 62, crc32c(99999, 1, 62))`},
+		{"spectrum", `UPDATE computation SET failure = 'another' WHERE id = 1`},
 		{"measure", `UPDATE measure SET value = value * 1.0000000000000002 WHERE computation_id = 1 AND name = 'pga_m_s2'`},
 		{"measure", `DELETE FROM measure WHERE computation_id = ` + pair + ` AND name = 'pgd_m'`},
 		{"measure", `INSERT INTO measure (computation_id, name, value) VALUES (99999, 'pgd_m', 1)`},

@@ -105,23 +105,74 @@ func TestDamagedAnswers(t *testing.T) {
 	}
 }
 
-// TestDamagedSpectraAreLeftOut: so are spectra that are cut or garbled, and those that
-// are not there, which ingest computes again.
+// loseOrdinate is what a migration left of a spectrum that was damaged: of the damping of a
+// position, a role and a record's code.
+const loseOrdinate = `UPDATE tile_part SET (sd_m, crc32c) = (SELECT d, crc32c(d) FROM (
+		SELECT CAST(substr(sd_m, 1, 8 * s.place) || x'ffffffffffffffff' || substr(sd_m, 8 * s.place + 9) AS BLOB) AS d
+		FROM spectrum s JOIN computed k ON k.computation_id = s.computation_id JOIN record r ON r.id = k.record_id WHERE k.role = ?2 AND r.code = ?3))
+	WHERE id = (SELECT (s.tile_id << 20) + (?1 << 12) FROM spectrum s JOIN computed k ON k.computation_id = s.computation_id JOIN record r ON r.id = k.record_id WHERE k.role = ?2 AND r.code = ?3)`
+
+// TestDamagedSpectraAreLeftOut: so are spectra that are lost, that nobody knows the place of, and
+// those that are not there, which ingest computes again.
 func TestDamagedSpectraAreLeftOut(t *testing.T) {
-	const where = ` WHERE id = (SELECT 256 * k.computation_id FROM computed k JOIN record r ON r.id = k.record_id WHERE k.role = ? AND r.code = 'R2')`
+	const where = ` WHERE computation_id = (SELECT k.computation_id FROM computed k JOIN record r ON r.id = k.record_id WHERE k.role = ?2 AND r.code = ?3)`
 	for name, damage := range map[string]string{
-		"cut":     `UPDATE spectrum SET sd_m = substr(sd_m, 1, 30)` + where,
-		"garbled": `UPDATE spectrum SET sd_m = CAST(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB)` + where,
-		"gone":    `DELETE FROM spectrum` + where,
+		"lost":      loseOrdinate,
+		"misplaced": `UPDATE spectrum SET place = place + 20 + ?1` + where,
+		"gone":      `DELETE FROM spectrum` + where + ` AND ?1 = 0`,
 	} {
 		t.Run(name, func(t *testing.T) {
 			store := newStore(t, handGrid, handRecords())
-			alter(t, store, damage, db.RoleH2)
+			alter(t, store, damage, 0, db.RoleH2, "R2")
 			const reason = "damaged in the store"
 			for component, spectra := range map[Component]int{ComponentGeomean: 2, ComponentH2: 2, ComponentEach: 6} {
 				r := askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Component: component}, Damping: 0.02}).Selection
 				if r.Spectra != spectra || !slices.Contains(r.LeftOut, LeftOut{reason, 1}) {
 					t.Errorf("%s: %+v, want %d spectra", component, r, spectra)
+				}
+			}
+		})
+	}
+}
+
+// TestDamagedPartsAreLeftOut: of a tile that is damaged at some periods all records are left out of
+// questions about these, and none of those about others.
+func TestDamagedPartsAreLeftOut(t *testing.T) {
+	grid := db.Grid{Dampings: []float64{0.02, 0.05}}
+	for p := range 12 {
+		grid.PeriodsS = append(grid.PeriodsS, 0.1*float64(1+p))
+	}
+	for name, damage := range map[string]string{
+		"cut":     `UPDATE tile_part SET sd_m = substr(sd_m, 1, 30) WHERE id = (1 << 20) + 1`,
+		"garbled": `UPDATE tile_part SET sd_m = CAST(substr(sd_m, 2) || substr(sd_m, 1, 1) AS BLOB) WHERE id = (1 << 20) + 1`,
+		"gone":    `DELETE FROM tile_part WHERE id = (1 << 20) + 1`,
+	} {
+		t.Run(name, func(t *testing.T) {
+			store := newStore(t, grid, handRecords())
+			err := change(t.Context(), store, func(tx *db.Tx) error {
+				g, _, err := tx.Current(t.Context())
+				if err != nil {
+					return err
+				}
+				return inventedRecord{code: "R7", siting: "ground", components: pair(2, 2)}.put(t.Context(), tx, 1, g)
+			})
+			if err != nil {
+				t.Fatal(err)
+			}
+			alter(t, store, damage)
+			ask := func(component Component, damping float64, periods ...float64) SelectionReport {
+				return askSpectrum(t, store, SpectrumQuestion{Selection: Selection{Component: component}, Damping: damping, PeriodsS: periods}).Selection
+			}
+			for _, component := range []Component{ComponentGeomean, ComponentRotD50} {
+				for _, r := range []SelectionReport{ask(component, 0.02, grid.PeriodsS[:8]...), ask(component, 0.05)} {
+					if r.Records != 4 || slices.Contains(r.LeftOut, LeftOut{"damaged in the store", 3}) {
+						t.Errorf("%s beside the damage: %+v", component, r)
+					}
+				}
+				for _, r := range []SelectionReport{ask(component, 0.02, grid.PeriodsS[8]), ask(component, 0.02)} {
+					if r.Records != 1 || !slices.Contains(r.LeftOut, LeftOut{"damaged in the store", 3}) {
+						t.Errorf("%s where the damage is: %+v", component, r)
+					}
 				}
 			}
 		})

@@ -273,7 +273,7 @@ func TestDatasetsAreEqual(t *testing.T) {
 // at all, as in CSV, and out of all tables.
 func TestDatasetLeavesDamageOut(t *testing.T) {
 	store := newStore(t, handGrid, handRecords())
-	alter(t, store, `UPDATE spectrum SET sd_m = zeroblob(length(sd_m)) WHERE id = (SELECT 256 * k.computation_id + 1 FROM computed k JOIN record r ON r.id = k.record_id WHERE r.code = 'R2' AND k.role = 'h1')`)
+	alter(t, store, loseOrdinate, 1, db.RoleH1, "R2")
 	want, _ := export(t, store, ExportQuestion{})
 	folder, summary := writeDataset(t, store, DatasetQuestion{})
 	if text := asCSV(ordinatesIn(t, folder)); text != want || strings.Contains(text, "R2,h1") || !strings.Contains(text, "R2,h2") {

@@ -28,9 +28,9 @@ type ExportSummary struct {
 // exportHeader names the columns: damping is a ratio, g is 9.80665 m/s².
 const exportHeader = "record,component,damping,period_s,sd_m,psv_m_s,psa_g\n"
 
-// exportMemory is about how many bytes of ordinates are held at a time. A part
-// costs one walk through the stored spectra of each damping, so it should not
-// be small; the default grid makes it 3300 components.
+// exportMemory is about how many bytes of ordinates are held at a time. Records come in the
+// order of their codes, so that most tiles of the store may have some of each part: it should
+// not be small; the default grid makes it 3300 components.
 const exportMemory = 32 << 20
 
 // exportGroup is the number of components whose rows are formatted side by

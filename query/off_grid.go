@@ -241,3 +241,30 @@ func (s *source) computeBlocks(ctx context.Context, o *ordinates, motions []moti
 	t.keeper.close(ctx)
 	return err
 }
+
+// part is one spectrum that is wanted, and the motion that it is of.
+type part struct {
+	recordID int64
+	motion   int
+	isFirst  bool // of the motion's spectra
+}
+
+// partsByRole lists what is wanted of each role, in the order of the records'
+// ids.
+func partsByRole(motions []motion) map[string][]part {
+	out := map[string][]part{}
+	for i := range motions {
+		m := &motions[i]
+		if m.isRotated() {
+			out[m.role] = append(out[m.role], part{recordID: m.members[0].RecordID, motion: i, isFirst: true})
+			continue
+		}
+		for k, c := range m.members {
+			out[c.Role] = append(out[c.Role], part{recordID: c.RecordID, motion: i, isFirst: k == 0})
+		}
+	}
+	for _, parts := range out {
+		slices.SortFunc(parts, func(a, b part) int { return cmp.Compare(a.recordID, b.recordID) })
+	}
+	return out
+}

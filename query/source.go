@@ -45,7 +45,6 @@ func viewAny(ctx context.Context, store *db.Store, asOf int64, f func(*db.Snapsh
 type source struct {
 	snapshot *db.Snapshot
 	method   Method
-	walks    *walks // of who asks part by part; see there
 }
 
 // whereabouts say which oscillators the store has spectra of, and where.
@@ -122,7 +121,6 @@ func (s *source) loadMotions(ctx context.Context, motions []motion, oscillators 
 			continue
 		}
 		r := newReader(o, motions, out, stored, w.columns)
-		r.walks = s.walks
 		lacking, err := r.readAll(ctx, s.snapshot, damping)
 		if err != nil {
 			return nil, nil, err

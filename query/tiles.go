@@ -14,10 +14,11 @@ import (
 	"swaybook/db"
 )
 
-// tiles turn spectra, which are stored motion by motion, into columns of one period. They are
-// a file: some motions after others in the order of their records' ids, which is how they lie
-// in the store, of each damping; within a tile period by period. So each spectrum is read
-// once, each tile is written once, and what is read of one for some periods stands together.
+// tiles turn spectra, which are stored some motions at a time, into columns of one period. They are
+// a file: some motions after others in the order of their records' ids, which is about how they
+// lie in the store, of each damping; within a tile period by period. A tile here has so many
+// motions that few of the store's, which have 63 of all roles, are read for two of them; each is
+// written once, and what is read of one for some periods stands together.
 type tiles struct {
 	file     *os.File
 	dampings []float64
@@ -67,7 +68,7 @@ func (t *tiles) offset(damping, from int) int64 {
 func (t *tiles) fill(ctx context.Context, snapshot *db.Snapshot) (unfit map[int]string, err error) {
 	unfit = map[int]string{}
 	for damping, zeta := range t.dampings {
-		s := source{snapshot: snapshot, walks: newWalks()}
+		s := source{snapshot: snapshot}
 		err := t.each(func(from, to int) error {
 			part := make([]motion, 0, to-from)
 			for _, i := range t.order[from:to] {
@@ -82,9 +83,6 @@ func (t *tiles) fill(ctx context.Context, snapshot *db.Snapshot) (unfit map[int]
 			}
 			return t.write(loaded.sd, t.offset(damping, from))
 		})
-		if err == nil {
-			err = s.walks.end(ctx)
-		}
 		if err != nil {
 			return nil, err
 		}

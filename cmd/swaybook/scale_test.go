@@ -157,7 +157,7 @@ func (m *measurements) print(store string) {
 	}
 	defer raw.Close()
 	var spectra, ordinates, spectraBytes, samples, seriesBytes float64
-	err = raw.QueryRow(`SELECT (SELECT count(*) FROM spectrum), (SELECT count(*) FROM grid_period), (SELECT sum(length(sd_m)) FROM spectrum), (SELECT sum(samples) FROM edition_component), (SELECT sum(length(data)) FROM series)`).
+	err = raw.QueryRow(`SELECT (SELECT count(*) FROM spectrum), (SELECT (SELECT count(*) FROM grid_damping) * count(*) FROM grid_period), (SELECT sum(length(sd_m)) FROM tile_part), (SELECT sum(samples) FROM edition_component), (SELECT sum(length(data)) FROM series)`).
 		Scan(&spectra, &ordinates, &spectraBytes, &samples, &seriesBytes)
 	if err != nil {
 		m.t.Fatal(err)

@@ -39,6 +39,7 @@ func TestUpgrade(t *testing.T) {
 		{"schema-3", "2 a3ec6885f3a56a5d551d48c4e58f39e3451a5ec1cb7f9c819f56a9682ea03e2e", 12, samplesOf},
 		{"schema-17", "2 e9be77eadcd00596631de6dc66fa744cd475cfd3cb8ecb905440f25a563a842c", 0, seriesOf},
 		{"schema-20", "2 e9be77eadcd00596631de6dc66fa744cd475cfd3cb8ecb905440f25a563a842c", 0, seriesOf},
+		{"schema-22", "2 e9be77eadcd00596631de6dc66fa744cd475cfd3cb8ecb905440f25a563a842c", 0, seriesOf},
 	} {
 		t.Run(c.file, func(t *testing.T) {
 			path := filepath.Join(t.TempDir(), "s.db")
@@ -92,7 +93,7 @@ func TestUpgradeByIngest(t *testing.T) {
 	if len(want) != 200 {
 		t.Fatalf("%d ordinates of 12 components and 4 pairs, want 200", len(want))
 	}
-	for _, file := range []string{"schema-1", "schema-2", "schema-3", "schema-17", "schema-20"} {
+	for _, file := range []string{"schema-1", "schema-2", "schema-3", "schema-17", "schema-20", "schema-22"} {
 		t.Run(file, func(t *testing.T) {
 			path := filepath.Join(t.TempDir(), "s.db")
 			unpackStore(t, file, path)
@@ -146,7 +147,9 @@ func TestUpgradeOfSpectra(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	got := textsIn(t, path, `SELECT id || ' ' || iif(crc32c = -1 AND sd_m = x'', 'damaged', hex(sd_m)) FROM spectrum ORDER BY id`)
+	got := textsIn(t, path, `SELECT id || ' ' || iif(trim(sd, 'F') = '', 'damaged', sd) FROM (
+		SELECT 256 * s.computation_id + d.position AS id, group_concat(hex(substr(w.sd_m, 8 * (p.position * t.motions + s.place) + 1, 8)), '' ORDER BY p.position) AS sd
+		FROM spectrum s JOIN tile t ON t.id = s.tile_id JOIN grid_damping d JOIN tile_part w ON w.id = (t.id << 20) + (d.position << 12) JOIN grid_period p GROUP BY 1) ORDER BY id`)
 	if len(want) != 40 || len(damaged) != 3 || !reflect.DeepEqual(got, want) {
 		t.Errorf("%d spectra, %d of them damaged: %v, want %v", len(want), len(damaged), got, want)
 	}

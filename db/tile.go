@@ -1,0 +1,163 @@
+package db
+
+import (
+	"bytes"
+	"context"
+	"encoding/binary"
+	"fmt"
+	"slices"
+)
+
+// Spectra are stored in tiles of some motions, cut into parts of some periods at one damping, so
+// that a period of many motions is read without their other periods.
+const (
+	// TileMotions is how many motions a tile has at most: with as many a part fills a page.
+	TileMotions = 63
+
+	partPeriods = 8 // of a part, but for the last of a damping
+
+	partBits = 12 // of a part's id, for its number
+	tileBits = 20 // for number and damping
+
+	mostDampings = 1 << (tileBits - partBits)
+	mostPeriods  = partPeriods << partBits
+)
+
+// partID is the id of a part of a tile at the damping of this position.
+func partID(tile int64, damping, part int) int64 {
+	return tile<<tileBits | int64(damping)<<partBits | int64(part)
+}
+
+// partOf takes a part's id apart.
+func partOf(id int64) (tile int64, damping, part int) {
+	return id >> tileBits, int(id >> partBits & (mostDampings - 1)), int(id & (1<<partBits - 1))
+}
+
+// partsOf is how many parts so many periods make.
+func partsOf(periods int) int { return (periods + partPeriods - 1) / partPeriods }
+
+// partSpan is the periods of a part, of so many in all.
+func partSpan(part, periods int) Span {
+	return Span{partPeriods * part, min(partPeriods*(part+1), periods)}
+}
+
+// lostOrdinate is an ordinate that was damaged before it came into a tile. No double that is
+// computed has all bits set.
+var lostOrdinate = bytes.Repeat([]byte{0xff}, OrdinateWidth)
+
+const lostBits = 1<<64 - 1
+
+// appendPart appends a part of spectra of several motions, each as it is encoded.
+func appendPart(dst []byte, spectra [][]byte, periods Span) []byte {
+	for p := OrdinateWidth * periods.From; p < OrdinateWidth*periods.To; p += OrdinateWidth {
+		for _, sd := range spectra {
+			dst = append(dst, sd[p:p+OrdinateWidth]...)
+		}
+	}
+	return dst
+}
+
+// placeSeal is the checksum of a row of spectrum, as crc32c in SQL makes it of the three.
+func placeSeal(computation, tile, place int64) int64 {
+	const width = 1 + 8
+	var text [3 * width]byte
+	for i, x := range [...]int64{computation, tile, place} {
+		text[width*i] = width
+		binary.LittleEndian.PutUint64(text[width*i+1:], uint64(x))
+	}
+	return sealOf(text[:])
+}
+
+// tileBegun is a tile that a transaction fills, and writes before it is committed.
+type tileBegun struct {
+	id         int64 // 0 for none
+	generation int64
+	motions    [][][]byte // by place and damping
+}
+
+// takes reports whether spectra may go into the tile.
+func (b *tileBegun) takes(generation int64, sd [][]byte) bool {
+	return b.id != 0 && b.generation == generation && len(b.motions) < TileMotions &&
+		slices.EqualFunc(b.motions[0], sd, func(a, b []byte) bool { return len(a) == len(b) })
+}
+
+// placeSpectra gives a computation's spectra, by damping, a place in a tile.
+func (t *Tx) placeSpectra(ctx context.Context, computationID, generationID int64, sd [][]byte) error {
+	if len(sd) == 0 {
+		return nil
+	}
+	b := &t.begun
+	if !b.takes(generationID, sd) {
+		if err := t.writeTile(ctx); err != nil {
+			return err
+		}
+		// What was lost of other tables gives no number away twice.
+		id, err := t.idOf(ctx, `SELECT 1 + max((SELECT coalesce(max(id), 0) FROM tile), (SELECT coalesce(max(tile_id), 0) FROM spectrum), (SELECT coalesce(max(id), 0) FROM tile_part) >> ?)`, tileBits)
+		if err != nil {
+			return fmt.Errorf("begin tile: %w", err)
+		}
+		b.id, b.generation = id, generationID
+	}
+	place := int64(len(b.motions))
+	if err := t.exec(ctx, `INSERT INTO spectrum (computation_id, tile_id, place, crc32c) VALUES (?, ?, ?, ?)`,
+		computationID, b.id, place, placeSeal(computationID, b.id, place)); err != nil {
+		return fmt.Errorf("store spectrum: %w", err)
+	}
+	b.motions = append(b.motions, sd)
+	return nil
+}
+
+// writeTile writes the tile that is begun, if one is.
+func (t *Tx) writeTile(ctx context.Context) error {
+	b := t.begun
+	t.begun = tileBegun{}
+	if b.id == 0 {
+		return nil
+	}
+	if err := t.exec(ctx, `INSERT INTO tile (id, motions) VALUES (?, ?)`, b.id, len(b.motions)); err != nil {
+		return fmt.Errorf("store tile: %w", err)
+	}
+	spectra := make([][]byte, len(b.motions))
+	var data []byte
+	for damping, sd := range b.motions[0] {
+		for place := range spectra {
+			spectra[place] = b.motions[place][damping]
+		}
+		periods := len(sd) / OrdinateWidth
+		for part := range partsOf(periods) {
+			data = appendPart(data[:0], spectra, partSpan(part, periods))
+			if err := t.exec(ctx, `INSERT INTO tile_part (id, sd_m, crc32c) VALUES (?, ?, ?)`, partID(b.id, damping, part), data, sealOf(data)); err != nil {
+				return fmt.Errorf("store tile: %w", err)
+			}
+		}
+	}
+	return nil
+}
+
+// hasSpectra says of a row k of computed whether its spectra are stored: where its tile has its
+// first part, or is the one that a transaction has begun, of which there are none yet. What lacks
+// them is computed again.
+const hasSpectra = `EXISTS (SELECT 1 FROM spectrum s WHERE s.computation_id = k.computation_id AND
+	(s.tile_id = ? OR EXISTS (SELECT 1 FROM tile_part p WHERE p.id = s.tile_id << 20)))`
+
+// forgetSpectra removes spectra of computations, which ids lists, and tiles of which nothing is
+// left. What others have in the same tile keeps it whole.
+func (t *Tx) forgetSpectra(ctx context.Context, ids string) error {
+	var tiles string
+	err := t.tx.QueryRowContext(ctx, `SELECT json_group_array(DISTINCT s.tile_id) FROM json_each(?) k JOIN spectrum s ON s.computation_id = k.value`, ids).Scan(&tiles)
+	if err == nil {
+		err = t.exec(ctx, `DELETE FROM spectrum WHERE computation_id IN (SELECT value FROM json_each(?))`, ids)
+	}
+	if err == nil {
+		err = t.tx.QueryRowContext(ctx, `SELECT json_group_array(value) FROM json_each(?) k WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.tile_id = k.value)`, tiles).Scan(&tiles)
+	}
+	for _, statement := range []string{
+		`DELETE FROM tile WHERE id IN (SELECT value FROM json_each(?))`,
+		`DELETE FROM tile_part WHERE id IN (SELECT p.id FROM json_each(?) k CROSS JOIN tile_part p ON p.id BETWEEN k.value << 20 AND (k.value << 20) + (1 << 20) - 1)`,
+	} {
+		if err == nil {
+			err = t.exec(ctx, statement, tiles)
+		}
+	}
+	return err
+}
