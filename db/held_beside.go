@@ -317,21 +317,18 @@ func (s *Snapshot) peaks(ctx context.Context, condition string, wants func(role 
 
 // computations are those of a role by record, read once.
 func (s *Snapshot) computations(ctx context.Context, role string) (map[int64]int64, error) {
-	s.known.Lock()
-	defer s.known.Unlock()
-	if out := s.computed[role]; out != nil {
-		return out, nil
-	}
-	var of roleOf
-	var id int64
-	out := map[int64]int64{}
-	err := s.scan(ctx, wanted{name: "computed", part: role, columns: words(`record_id role computation_id`), into: []any{&of.record, &of.role, &id}}, func() error {
-		out[of.record] = id
-		return nil
-	})
+	all, err := s.located(ctx, role)
 	if err != nil {
 		return nil, err
 	}
-	s.computed[role] = out
-	return out, nil
+	s.known.Lock()
+	defer s.known.Unlock()
+	if s.computed[role] == nil {
+		out := make(map[int64]int64, len(all))
+		for _, l := range all {
+			out[l.record] = l.computation
+		}
+		s.computed[role] = out
+	}
+	return s.computed[role], nil
 }

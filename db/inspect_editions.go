@@ -92,7 +92,7 @@ func (i *Inspection) linked(ctx context.Context) error {
 		if err := i.sealed(ctx, id, shown); err != nil {
 			return err
 		}
-		if err := i.laidOut(ctx, id); err != nil {
+		if err := i.laidOut(ctx, id, shown); err != nil {
 			return err
 		}
 		for _, l := range []struct{ table, query string }{
@@ -149,14 +149,14 @@ func (i *Inspection) sealed(ctx context.Context, id int64, shown tables) error {
 }
 
 // laidOut compares what is laid out of an edition with what it showed when it was made.
-func (i *Inspection) laidOut(ctx context.Context, id int64) error {
+func (i *Inspection) laidOut(ctx context.Context, id int64, shown tables) error {
 	seals, err := sealsOf(ctx, i.tx, id)
 	isThere := false
 	if err == nil {
 		isThere, err = isLaidOut(ctx, i.tx, id)
 	}
 	if err == nil && isThere {
-		s := Snapshot{tx: i.tx, Edition: Edition{ID: id}, seals: seals}
+		s := Snapshot{tx: i.tx, shown: shown, seals: seals, isLaidOut: true, Edition: Edition{ID: id}}
 		err = s.checkLayout(ctx)
 	}
 	if ctx.Err() != nil {

@@ -191,6 +191,35 @@ func (s *Snapshot) checkLayout(ctx context.Context) error {
 			}
 		}
 	}
+	for _, role := range s.partsOf("computed") {
+		if err := s.checkPlaces(ctx, role); err != nil {
+			return s.unread(layoutName, err)
+		}
+	}
+	return nil
+}
+
+// checkPlaces says whether spectra are laid out where they are: what was lost and computed
+// again is in another tile than it was. What is damaged has no place.
+func (s *Snapshot) checkPlaces(ctx context.Context, role string) error {
+	laid, err := s.locatedIn(ctx, role)
+	if err != nil {
+		return err
+	}
+	rows := Snapshot{tx: s.tx, shown: s.shown}
+	now, err := rows.locatedIn(ctx, role)
+	if err != nil {
+		return err
+	}
+	at := make(map[int64]location, len(laid))
+	for _, l := range laid {
+		at[l.record] = l
+	}
+	for _, l := range now {
+		if l.tile > 0 && at[l.record] != l {
+			return fmt.Errorf("%w: the spectra of record %d %s are in another place", errPiece, l.record, role)
+		}
+	}
 	return nil
 }
 

@@ -204,6 +204,32 @@ func TestDamagedColumnsAreRefused(t *testing.T) {
 			t.Errorf("%s: after the next run %v", statement, err)
 		}
 	}
+	lost := count(t, s, `SELECT computation_id FROM edition_computed WHERE role = 'h1' AND record_id = 2`)
+	changed(t, s, func(ctx context.Context, tx *Tx) error {
+		if err := tx.exec(ctx, `DELETE FROM tile_part WHERE id >> 20 = (SELECT tile_id FROM spectrum WHERE computation_id = ?)`, lost); err != nil {
+			return err
+		}
+		return tx.AddSolved(ctx, Unsolved{RecordID: 2, Role: RoleH1}, 1, NewSpectra([][]float64{{3, 2, 1}, {6, 5, 4}}, map[string]float64{MeasurePGA: 1.1, MeasurePGV: 2.2, MeasurePGD: 3.3000000000000003}, nil))
+	})
+	spectrum := func() (out []float64) {
+		t.Helper()
+		err := s.View(t.Context(), func(v *Snapshot) error {
+			return v.SpectraOf(t.Context(), []RoleSpectrum{{2, RoleH1}}, 0, Span{0, 3}, func(_ int, sd []float64) error {
+				out = append(out, sd...)
+				return nil
+			})
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+		return out
+	}
+	if sd := spectrum(); sd != nil {
+		t.Errorf("what was lost is %v before the run has ended", sd)
+	}
+	if _, isNew := editionOf(t, s, true); isNew || !reflect.DeepEqual(spectrum(), []float64{3, 2, 1}) {
+		t.Errorf("what was computed again is %v, new %v", spectrum(), isNew)
+	}
 	if _, err := s.write.ExecContext(t.Context(), `DELETE FROM edition_column; UPDATE edition_record SET siting = 'borehole'; UPDATE record SET siting = 'borehole'`); err != nil {
 		t.Fatal(err)
 	}

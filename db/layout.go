@@ -32,7 +32,14 @@ var layouts = []layout{
 			return shown("component") + ` x JOIN ` + shown("record") + ` r ON r.id = x.record_id`
 		}},
 	{name: "finding", part: "flag", columns: words(`component_id flag value bound words`), order: `component_id`},
-	{name: "computed", part: "role", columns: words(`record_id role computation_id`), order: `record_id`},
+	{name: "computed", part: "role", columns: words(`record_id role computation_id tile_id place motions`), order: `record_id`,
+		from: func(shown tables) string {
+			return `(SELECT k.record_id, k.role, k.computation_id,
+				CASE WHEN s.tile_id IS NULL THEN 0
+					WHEN s.crc32c = crc32c(k.computation_id, s.tile_id, s.place) AND s.place BETWEEN 0 AND coalesce(t.motions, 0) - 1 THEN s.tile_id
+					ELSE -1 END AS tile_id, coalesce(s.place, 0) AS place, coalesce(t.motions, 0) AS motions
+				FROM ` + shown("computed") + ` k LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id) x`
+		}},
 	{name: sealedConditioning, columns: words(`record_id role computation_id step_s samples lead_s low_cut_hz high_cut_hz long_s`), order: `record_id, role`,
 		from: func(shown tables) string {
 			return `(SELECT k.record_id, k.role, k.computation_id, c.step_s, c.samples, c.lead_s, c.low_cut_hz, c.high_cut_hz, c.long_s
@@ -62,6 +69,9 @@ func (l *layout) query(shown tables, columns []string, condition string) string 
 // what else there is of editions is asked about too seldom. One that is made just now, if any,
 // is known to be what its seals say.
 func (t *Tx) layOut(ctx context.Context, made int64) error {
+	if err := t.writeTile(ctx); err != nil { // to tell where its spectra are
+		return err
+	}
 	rows, err := t.tx.QueryContext(ctx, `SELECT id, generation_id, state FROM edition WHERE id = (SELECT max(id) FROM edition) OR `+isPublished+` ORDER BY id DESC`)
 	if err != nil {
 		return fmt.Errorf("lay out editions: %w", err)
@@ -111,7 +121,7 @@ func (t *Tx) isToLayOut(ctx context.Context, id int64, shown tables) (bool, erro
 	if err != nil {
 		return false, err
 	}
-	s := Snapshot{tx: t.tx, Edition: Edition{ID: id}, seals: seals}
+	s := Snapshot{tx: t.tx, shown: shown, seals: seals, isLaidOut: true, Edition: Edition{ID: id}}
 	isThere, err := isLaidOut(ctx, t.tx, id)
 	if err != nil {
 		return false, err
@@ -121,8 +131,8 @@ func (t *Tx) isToLayOut(ctx context.Context, id int64, shown tables) (bool, erro
 			return false, err
 		}
 	}
-	for name := range sealsNow(id, shown) {
-		if text, err := unlike(ctx, t.tx, id, shown, name, seals); err != nil || text != "" {
+	for i := range layouts {
+		if text, err := unlike(ctx, t.tx, id, shown, layouts[i].name, seals); err != nil || text != "" {
 			return false, err
 		}
 	}

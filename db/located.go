@@ -3,7 +3,6 @@ package db
 import (
 	"context"
 	"database/sql"
-	"fmt"
 )
 
 // location is where the spectra of a record's role are: in a tile, at one of as many places as it
@@ -22,34 +21,25 @@ func (s *Snapshot) located(ctx context.Context, role string) ([]location, error)
 	if out, ok := s.places[role]; ok {
 		return out, nil
 	}
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, s.tile_id, s.place, s.crc32c, coalesce(t.motions, 0) FROM `+s.shown("computed")+` k
-		LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id WHERE k.role = ? ORDER BY k.record_id`, role)
+	out, err := s.locatedIn(ctx, role)
 	if err != nil {
-		return nil, fmt.Errorf("find spectra: %w", err)
-	}
-	defer rows.Close()
-	seen := s.tally("computed", role, "record_id", "role", "computation_id", "", "", "", "")
-	var out []location
-	var of string
-	var l location
-	var p placing
-	into := []any{&l.record, &of, &l.computation, &p.tile, &p.place, &p.seal, &l.motions}
-	for rows.Next() {
-		if err := rows.Scan(into...); err != nil {
-			return nil, s.unread("computed", err)
-		}
-		seen.add(into)
-		out = append(out, p.of(l))
-	}
-	err = rows.Err()
-	if err == nil {
-		err = seen.check()
-	}
-	if err != nil {
-		return nil, s.unread("computed", err)
+		return nil, err
 	}
 	s.places[role] = out
 	return out, nil
+}
+
+func (s *Snapshot) locatedIn(ctx context.Context, role string) (out []location, err error) {
+	var of string
+	var l location
+	err = s.scan(ctx, wanted{
+		name: "computed", part: role, columns: words(`record_id role computation_id tile_id place motions`),
+		into: []any{&l.record, &of, &l.computation, &l.tile, &l.place, &l.motions},
+	}, func() error {
+		out = append(out, l)
+		return nil
+	})
+	return out, err
 }
 
 // placing is a row of spectrum, NULL of one that is not there.

@@ -36,7 +36,7 @@ type Snapshot struct {
 
 // ofRows is the snapshot without what is laid out of its edition.
 func (s *Snapshot) ofRows() *Snapshot {
-	return &Snapshot{tx: s.tx, store: s.store, shown: s.shown, seals: s.seals, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{},
+	return &Snapshot{tx: s.tx, store: s.store, shown: s.shown, seals: s.seals, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}, places: map[string][]location{},
 		Edition: s.Edition, Generation: s.Generation}
 }
 

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"maps"
 	"slices"
+	"strings"
 	"testing"
 )
 
@@ -133,7 +134,7 @@ func TestSpectraOfSome(t *testing.T) {
 // A row that was lost, of a record that is asked for or not, is seen.
 func TestSpectraOfALostRow(t *testing.T) {
 	s, _ := tiledStore(t, 9)
-	if _, err := s.write.ExecContext(t.Context(), `DELETE FROM edition_computed WHERE record_id = 7`); err != nil {
+	if _, err := s.write.ExecContext(t.Context(), `DELETE FROM edition_column; DELETE FROM edition_computed WHERE record_id = 7`); err != nil {
 		t.Fatal(err)
 	}
 	nothing := func(int, []float64) error { return nil }
@@ -174,6 +175,10 @@ func TestDamagedTiles(t *testing.T) {
 		s, _ := tiledStore(t, records)
 		if _, err := s.write.ExecContext(t.Context(), damage); err != nil {
 			t.Fatal(damage, err)
+		}
+		ofRows := !strings.Contains(damage, "tile_part") // columns still say where all is
+		if _, err := s.write.ExecContext(t.Context(), `DELETE FROM edition_column WHERE ?`, ofRows); err != nil {
+			t.Fatal(err)
 		}
 		for periods, want := range map[Span][]int64{{0, 8}: want.early, {3, 4}: want.early, {8, 12}: want.late, {0, 19}: want.late} {
 			got := spectraOf(t, s, RoleH1, 1, periods)
@@ -301,6 +306,7 @@ func TestLostSpectraAreComputedAgain(t *testing.T) {
 	if n := count(t, s, `SELECT count(*) FROM tile_part WHERE id < 2 << 20`); n != 0 {
 		t.Errorf("%d parts of the lost tile are left", n)
 	}
+	editionOf(t, s, true)
 	for id, sd := range spectraOf(t, s, RoleH2, 2, Span{0, 19}) {
 		if !slices.Equal(sd, tiledSD(id, RoleH2, 2, Span{0, 19})) {
 			t.Errorf("record %d: %v", id, sd)

@@ -14,8 +14,8 @@ type tally struct {
 	columnSums
 }
 
-// tally is of what columns of this part of a table are read, "" for one that is not the
-// table's own.
+// tally is of what columns of this part of a table are read; those that are not the table's own
+// do not count.
 func (s *Snapshot) tally(name, part string, columns ...string) *tally {
 	if s.seals == nil {
 		return nil
@@ -27,8 +27,8 @@ func (s *Snapshot) tally(name, part string, columns ...string) *tally {
 		t.keyAt = append(t.keyAt, slices.Index(columns, key))
 	}
 	for i, column := range columns {
-		if column != "" {
-			t.at, t.columns = append(t.at, i), append(t.columns, slices.Index(of.columns, column))
+		if k := slices.Index(of.columns, column); k >= 0 {
+			t.at, t.columns = append(t.at, i), append(t.columns, k)
 		}
 	}
 	t.keys, t.read, t.sums = make([]any, len(t.keyAt)), make([]any, len(t.at)), make([]int64, len(t.at))
