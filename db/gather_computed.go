@@ -27,6 +27,7 @@ type computationsComing struct {
 // computations takes over what was computed, in the order in which it was: what was computed
 // of pairs comes behind what was of their components.
 func (g *gathering) computations(ctx context.Context) error {
+	defer g.part.tiles.forget() // which stays open until all parts are read
 	return ahead(ctx, g.readComputations, func(batch computationsComing) error {
 		return g.update(ctx, batch.looked, func(t *Tx) error {
 			for i := range batch.list {

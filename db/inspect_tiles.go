@@ -11,10 +11,14 @@ import (
 // Spectra checks that every computation that has not failed has spectra, and that tiles have all
 // of their parts, as they were stored. What is not is named with those whose spectra are in it.
 func (i *Inspection) Spectra(ctx context.Context) error {
-	err := i.lookFor(ctx, "spectrum", `SELECT coalesce((SELECT r.code || ' ' || k.role || ': ' FROM computed k JOIN record r ON r.id = k.record_id WHERE k.computation_id = x.id), '') ||
-		'computation ' || x.id || ' has no spectra' FROM computation x WHERE x.failure IS NULL AND NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.computation_id = x.id)`)
+	var without []int64
+	err := look(ctx, i, "spectrum", `SELECT x.id FROM computation x WHERE x.failure IS NULL AND NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.computation_id = x.id) ORDER BY x.id`, nil,
+		func(id *int64) []any { return []any{id} }, func(id *int64) { without = append(without, *id) })
 	if err != nil {
 		return err
+	}
+	for _, id := range without {
+		i.found(i.Of(ctx, InspectedComputation{ID: id}, "spectrum", "has no spectra"))
 	}
 	tiles, err := i.inspectedTiles(ctx)
 	if err != nil {
@@ -115,7 +119,11 @@ func (i *Inspection) damagedIn(ctx context.Context, t *inspectedTile) error {
 			}
 			slices.Sort(of)
 			of = slices.Compact(of)
-			text := fmt.Sprintf("damping %d, periods %s: not what was stored; questions leave it out", damping+1, ranges(of))
+			periods := "periods"
+			if len(of) == 1 {
+				periods = "period"
+			}
+			text := fmt.Sprintf("damping %d, %s %s: not what was stored; questions leave it out", damping+1, periods, ranges(of))
 			i.found(i.Of(ctx, InspectedComputation{ID: v.computation}, "tile_part", text))
 		}
 	}

@@ -1,7 +1,6 @@
 package db
 
 import (
-	"bytes"
 	"context"
 	"encoding/binary"
 	"fmt"
@@ -41,17 +40,15 @@ func partSpan(part, periods int) Span {
 	return Span{partPeriods * part, min(partPeriods*(part+1), periods)}
 }
 
-// lostOrdinate is an ordinate that was damaged before it came into a tile. No double that is
-// computed has all bits set.
-var lostOrdinate = bytes.Repeat([]byte{0xff}, OrdinateWidth)
-
+// lostBits are those of an ordinate that was damaged before it came into a tile: all are set,
+// as in no double that is computed.
 const lostBits = 1<<64 - 1
 
 // appendPart appends a part of spectra of several motions, each as it is encoded.
 func appendPart(dst []byte, spectra [][]byte, periods Span) []byte {
 	for p := OrdinateWidth * periods.From; p < OrdinateWidth*periods.To; p += OrdinateWidth {
 		for _, sd := range spectra {
-			dst = append(dst, sd[p:p+OrdinateWidth]...)
+			dst = binary.NativeEndian.AppendUint64(dst, binary.NativeEndian.Uint64(sd[p:]))
 		}
 	}
 	return dst

@@ -23,7 +23,7 @@ func (s *tiledSpectra) Step(_ *sqlite.FunctionContext, args []driver.Value) erro
 		return fmt.Errorf("spectrum %d of %d in a tile, of %d periods: a store holds 1 to %d", place+1, motions, periods, mostPeriods)
 	}
 	if s.data == nil {
-		s.data = bytes.Repeat(lostOrdinate, motions*periods)
+		s.data = bytes.Repeat([]byte{0xff}, OrdinateWidth*motions*periods)
 	}
 	if sd, ok := args[3].([]byte); ok {
 		for p := range periods {

@@ -1,9 +1,9 @@
 package db
 
 import (
-	"bytes"
 	"context"
 	"database/sql"
+	"encoding/binary"
 	"errors"
 	"fmt"
 	"slices"
@@ -31,7 +31,7 @@ type wholeTile struct {
 }
 
 type tilePart struct {
-	data    []byte // nil of none, or of one of another length
+	data    []byte // empty of none, or of one of another length
 	isWhole bool   // it is what was stored
 }
 
@@ -54,6 +54,9 @@ func (r *tileReader) whole(ctx context.Context, computation int64) (sd [][]byte,
 	}
 	return sd, err
 }
+
+// forget lets go of the tiles that are kept.
+func (r *tileReader) forget() { r.tiles = nil }
 
 // read returns the spectra of a computation by damping; of one that has none, none.
 func (r *tileReader) read(ctx context.Context, computation int64) ([]storedSpectrum, error) {
@@ -95,10 +98,7 @@ func (r *tileReader) tile(ctx context.Context, of location, dampings, periods in
 		r.tiles[0] = t
 		return t, nil
 	}
-	t := &wholeTile{id: of.tile, motions: of.motions, periods: periods, parts: make([][]tilePart, dampings)}
-	for damping := range t.parts {
-		t.parts[damping] = make([]tilePart, partsOf(periods))
-	}
+	t := r.room(of, dampings, periods)
 	rows, err := r.q.QueryContext(ctx, `SELECT id, crc32c, sd_m FROM tile_part WHERE id BETWEEN ? AND ?`, partID(of.tile, 0, 0), partID(of.tile+1, 0, 0)-1)
 	if err != nil {
 		return nil, err
@@ -116,8 +116,26 @@ func (r *tileReader) tile(ctx context.Context, of location, dampings, periods in
 		return nil, err
 	}
 	r.tiles = slices.Insert(r.tiles, 0, t)
-	r.tiles = r.tiles[:min(len(r.tiles), keptTiles)]
 	return t, nil
+}
+
+// room makes an empty tile, in the room of the one that nobody has read for longest where there are
+// enough.
+func (r *tileReader) room(of location, dampings, periods int) *wholeTile {
+	t := &wholeTile{}
+	if last := len(r.tiles) - 1; last+1 == keptTiles {
+		t, r.tiles = r.tiles[last], r.tiles[:last]
+	}
+	t.id, t.motions, t.periods = of.tile, of.motions, periods
+	t.parts = slices.Grow(t.parts[:0], dampings)[:dampings]
+	for damping := range t.parts {
+		parts := slices.Grow(t.parts[damping][:0], partsOf(periods))[:partsOf(periods)]
+		for k := range parts {
+			parts[k] = tilePart{data: parts[k].data[:0]}
+		}
+		t.parts[damping] = parts
+	}
+	return t
 }
 
 // put takes in a part, if it is one that the tile can have.
@@ -127,7 +145,8 @@ func (t *wholeTile) put(id, seal int64, data []byte) {
 		return
 	}
 	if of := partSpan(part, t.periods); len(data) == OrdinateWidth*t.motions*(of.To-of.From) {
-		t.parts[damping][part] = tilePart{bytes.Clone(data), sealOf(data) == seal}
+		p := &t.parts[damping][part]
+		p.data, p.isWhole = append(p.data, data...), sealOf(data) == seal
 	}
 }
 
@@ -135,13 +154,15 @@ func (t *wholeTile) put(id, seal int64, data []byte) {
 func (t *wholeTile) motion(place int) []storedSpectrum {
 	out := make([]storedSpectrum, len(t.parts))
 	for damping, parts := range t.parts {
-		s := storedSpectrum{make([]byte, 0, OrdinateWidth*t.periods), true}
+		s, n := storedSpectrum{make([]byte, OrdinateWidth*t.periods), true}, 0
 		for _, part := range parts {
 			s.isWhole = s.isWhole && part.isWhole
 			for at := OrdinateWidth * place; at < len(part.data); at += OrdinateWidth * t.motions {
-				s.sd = append(s.sd, part.data[at:at+OrdinateWidth]...)
+				binary.NativeEndian.PutUint64(s.sd[n:], binary.NativeEndian.Uint64(part.data[at:]))
+				n += OrdinateWidth
 			}
 		}
+		s.sd = s.sd[:n]
 		if hasLost(s.sd) {
 			s = storedSpectrum{sd: withoutLost(s.sd)}
 		}
@@ -153,7 +174,7 @@ func (t *wholeTile) motion(place int) []storedSpectrum {
 // hasLost reports whether ordinates were lost before they came into a tile.
 func hasLost(sd []byte) bool {
 	for ; len(sd) > 0; sd = sd[OrdinateWidth:] {
-		if bytes.Equal(sd[:OrdinateWidth], lostOrdinate) {
+		if binary.BigEndian.Uint64(sd) == lostBits {
 			return true
 		}
 	}
@@ -163,7 +184,7 @@ func hasLost(sd []byte) bool {
 // withoutLost are the ordinates that were not.
 func withoutLost(sd []byte) (out []byte) {
 	for ; len(sd) > 0; sd = sd[OrdinateWidth:] {
-		if !bytes.Equal(sd[:OrdinateWidth], lostOrdinate) {
+		if binary.BigEndian.Uint64(sd) != lostBits {
 			out = append(out, sd[:OrdinateWidth]...)
 		}
 	}

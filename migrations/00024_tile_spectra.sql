@@ -68,7 +68,8 @@ DROP TABLE spectrum_alone;
 
 -- One row a period of the published edition, as before. 9.80665 m/s² is g. A byte is its place
 -- among all bytes. Eight are a whole number, << and | being done from left to right; its lower 52
--- bits are those of the mantissa, and products with powers of two are exact.
+-- bits are those of the mantissa, and products with powers of two are exact. What is asked for of
+-- records is looked at before periods and parts are (CROSS JOIN).
 CREATE VIEW ordinate AS
 SELECT record, component, damping, period_s,
        sd_m,
@@ -98,8 +99,8 @@ FROM (
         JOIN spectrum s ON s.computation_id = k.computation_id
         JOIN tile t ON t.id = s.tile_id AND t.motions > s.place
         JOIN edition_record r ON r.until > e.id AND r.since <= e.id AND r.id = k.record_id
-        JOIN grid_period p ON p.grid_id = g.grid_id
-        JOIN tile_part w ON w.id = (s.tile_id << 20) + (d.position << 12) + (p.position >> 3)
+        CROSS JOIN grid_period p ON p.grid_id = g.grid_id
+        CROSS JOIN tile_part w ON w.id = (s.tile_id << 20) + (d.position << 12) + (p.position >> 3)
         WHERE e.state = 'published'
     )
     WHERE length(double) = 8 AND double <> x'FFFFFFFFFFFFFFFF'
