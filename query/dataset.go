@@ -193,17 +193,15 @@ func createFile(path string, fill func(io.Writer) error) error {
 	return err
 }
 
-// IsDataset returns nil of a folder that holds what DatasetQuestion.Write leaves and nothing
-// else, and otherwise what else is there.
-func IsDataset(folder string) error {
-	return eachPart(folder, func(path string, e fs.DirEntry) error {
-		first, rest, isInside := strings.Cut(filepath.ToSlash(path), "/")
-		if isInside && slices.Contains([]string{tableOrdinates, tableMeasures, tableRecords, tableEvents}, first) &&
-			isPart.MatchString(rest) && e.Type().IsRegular() {
-			return nil
-		}
-		return fmt.Errorf("it holds %s, which no export has", path)
-	})
+// IsOfDataset returns nil of a file that DatasetQuestion.Write leaves at this path in a folder,
+// and otherwise that it is none.
+func IsOfDataset(path string, e fs.DirEntry) error {
+	first, rest, isInside := strings.Cut(filepath.ToSlash(path), "/")
+	if isInside && slices.Contains([]string{tableOrdinates, tableMeasures, tableRecords, tableEvents}, first) &&
+		isPart.MatchString(rest) && e.Type().IsRegular() {
+		return nil
+	}
+	return fmt.Errorf("it holds %s, which no export has", path)
 }
 
 // isPart is of paths of files inside the folder of a table.

@@ -133,7 +133,7 @@ func TestColumnsHaveOneName(t *testing.T) {
 	}
 }
 
-func TestIsDataset(t *testing.T) {
+func TestIsOfDataset(t *testing.T) {
 	for path, want := range map[string]bool{
 		"records/part-0001.parquet": true, "ordinates/damping=0.05/part-0002.parquet": true, "ordinates/damping=0/part-12345.parquet": true,
 		"part-0001.parquet": false, "ordinates": false, "photos/part-0001.parquet": false, "records/notes.txt": false,
@@ -144,7 +144,7 @@ func TestIsDataset(t *testing.T) {
 		if err := errors.Join(os.MkdirAll(filepath.Dir(file), 0o777), os.WriteFile(file, nil, 0o666)); err != nil {
 			t.Fatal(err)
 		}
-		if got := IsDataset(folder) == nil; got != want {
+		if got := eachPart(folder, IsOfDataset) == nil; got != want {
 			t.Errorf("%s: %v, want %v", path, got, want)
 		}
 	}

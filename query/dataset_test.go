@@ -131,7 +131,7 @@ func TestDatasetEqualsCSV(t *testing.T) {
 				t.Errorf("%d ordinates of %d spectra in %d files, want %d of %d in %d", got.Ordinates, got.Selection.Spectra, got.Files,
 					len(rows), summary.Selection.Spectra, len(partsOf(t, folder)))
 			}
-			if err := IsDataset(folder); err != nil {
+			if err := eachPart(folder, IsOfDataset); err != nil {
 				t.Error(err)
 			}
 		})

@@ -20,7 +20,8 @@ func exportParquetCommand() *cli.Command {
 		Usage:     "a folder of Parquet files: ordinates by damping and period, measures, records, events",
 		ArgsUsage: "DIR",
 		Description: "DIR has a folder a table, ordinates a folder a damping below it, sorted by period, record and component. Units stand in\n" +
-			"the metadata of the fields, SI but for g (9.80665 m/s²). DIR is there when all of it is written, or not at all.",
+			"the metadata of the fields, SI but for g (9.80665 m/s²). A DIR that is there and empty is\n" +
+			"filled, another is a new folder; either has all tables in the end, or is as it was.",
 		Flags: append(exportFlags(),
 			&cli.BoolFlag{Name: "force", DisableDefaultText: true, Usage: "replace DIR if it holds such an export"},
 		),
@@ -54,9 +55,9 @@ func newParquetOptions(c *cli.Context) (o parquetOptions, err error) {
 
 // runExportParquet writes the folder and says what is in it.
 func runExportParquet(ctx context.Context, store *db.Store, o parquetOptions, w, stderr io.Writer) error {
-	var mayReplace func(string) error
+	var mayReplace func(string, fs.DirEntry) error
 	if o.force {
-		mayReplace = query.IsDataset
+		mayReplace = query.IsOfDataset
 	}
 	var summary *query.DatasetSummary
 	err := beside.WriteFolder(o.dir, mayReplace, func(folder string) (err error) {

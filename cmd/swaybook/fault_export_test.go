@@ -4,45 +4,69 @@ package main
 
 import (
 	"fmt"
+	"io/fs"
+	"maps"
 	"os"
 	"os/exec"
 	"path/filepath"
-	"strings"
+	"regexp"
+	"slices"
+	"syscall"
 	"testing"
 )
 
 // Under a limit on the size of files an export ends with 0 and is whole, or with 1, the name of
-// what it could not write, and nothing beside the store.
+// what it could not write, and nothing beside the store but what was there.
 func TestFilesOfExportsMayNotGrow(t *testing.T) {
-	dir := t.TempDir()
 	store := storeOfAT2(t, t.TempDir())
 	failed, done := map[string]int{}, 0
 	for _, dampings := range []string{"0,2%,5%,10%,20%", "5%"} { // what is on its way has all of them, a file one
 		for blocks := 64; blocks <= 256; blocks *= 2 { // of 512 bytes; a store is not opened with fewer
-			what := fmt.Sprintf("dampings %s, %d blocks", dampings, blocks)
-			out := filepath.Join(dir, "out")
-			cmd := exec.Command("sh", "-c", fmt.Sprintf(`ulimit -f %d && exec swaybook --store "$0" export parquet --damping "$1" "$2"`, blocks), store, dampings, out)
-			text, err := cmd.CombinedOutput()
-			if err == nil {
-				done++
-				if err := os.RemoveAll(out); err != nil {
-					t.Fatal(err)
+			for _, isThere := range []bool{false, true} {
+				what := fmt.Sprintf("dampings %s, %d blocks, there before: %v", dampings, blocks, isThere)
+				dir := t.TempDir()
+				out, hidden := filepath.Join(dir, "out"), dir+`/\.out\.part-[0-9]+/new/`
+				if isThere {
+					hidden = out + `/\.part-[0-9]+/`
+					if err := os.Mkdir(out, 0o777); err != nil {
+						t.Fatal(err)
+					}
 				}
-			} else {
-				_, name, _ := strings.Cut(string(text), dir+"/.out.part-")
-				_, name, _ = strings.Cut(name, "/new/")
-				name, reason, _ := strings.Cut(name, ": ")
-				if cmd.ProcessState.ExitCode() != exitFailed || name == "" || reason != "file too large\n" {
-					t.Errorf("%s: exit code %d, %q", what, cmd.ProcessState.ExitCode(), text)
+				before := treeOf(t, dir)
+				cmd := exec.Command("sh", "-c", fmt.Sprintf(`ulimit -f %d && exec swaybook --store "$0" export parquet --damping "$1" "$2"`, blocks), store, dampings, out)
+				text, err := cmd.CombinedOutput()
+				if err == nil {
+					done++
+					continue
 				}
-				failed[strings.TrimRight(name, "0123456789")]++
-			}
-			if entries, err := os.ReadDir(dir); err != nil || len(entries) > 0 {
-				t.Errorf("%s: %v is left, %v", what, entries, err)
+				said := regexp.MustCompile(hidden + `(.+?)[0-9]*: file too large\n$`).FindStringSubmatch(string(text))
+				if cmd.ProcessState.ExitCode() != exitFailed || said == nil {
+					t.Fatalf("%s: exit code %d, %q", what, cmd.ProcessState.ExitCode(), text)
+				}
+				failed[said[1]]++
+				if after := treeOf(t, dir); !maps.Equal(after, before) {
+					t.Errorf("%s: %v is left", what, slices.Sorted(maps.Keys(after)))
+				}
 			}
 		}
 	}
 	if len(failed) < 2 || done == 0 {
 		t.Errorf("failed at %v, done %d: the limits do not meet both what is on its way and what is written", failed, done)
+	}
+}
+
+// An export goes into a disk that is mounted at the folder, whose group all of it has.
+func TestExportsFillMountPoints(t *testing.T) {
+	store, out := storeOfAT2(t, t.TempDir()), t.TempDir()
+	mount(t, "tmpfs", out, "tmpfs", 0, "mode=2775,gid=4321")
+	mustRun(t, exec.Command("swaybook", "--store", store, "export", "parquet", out))
+	for _, name := range []string{"", "records", "records/part-0001.parquet", "ordinates/damping=0.05", "ordinates/damping=0.05/part-0001.parquet"} {
+		info, err := os.Stat(filepath.Join(out, name))
+		if err != nil {
+			t.Fatal(err)
+		}
+		if is := info.Sys().(*syscall.Stat_t); is.Gid != 4321 || info.IsDir() && info.Mode()&fs.ModeSetgid == 0 {
+			t.Errorf("%q: group %d, mode %v", name, is.Gid, info.Mode())
+		}
 	}
 }

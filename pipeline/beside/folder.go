@@ -6,28 +6,25 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"slices"
+	"strings"
 )
 
-// WriteFolder has fill write a folder's files into a hidden one beside it, which takes the name
-// when all is on the disk: the folder is there whole, or as it was before. Where it is there
-// already and not empty, mayReplace says whether it may be replaced, or why not; nil replaces
-// nothing, and the error wraps fs.ErrExist. An error of fill is returned as it is. The folder
-// around it must be there. A process that is killed leaves the hidden one.
-func WriteFolder(path string, mayReplace func(folder string) error, fill func(folder string) error) error {
-	name, err := folderName(path)
-	if err == nil {
-		err = checkReplace(name, mayReplace)
-	}
-	var hidden string
-	if err == nil {
-		hidden, err = os.MkdirTemp(filepath.Dir(name), "."+filepath.Base(name)+".part-*")
-	}
-	if err != nil {
-		return fmt.Errorf("write %s: %w", path, err)
-	}
+// WriteFolder has fill write a folder's files into a hidden one, and has them take their places
+// when all is on the disk: they are there whole, or all is as it was.
+//
+// A folder that is there and empty stays the one that it is, be it a mount point or the one that
+// is worked in: the hidden one lies in it, and what is in that moves up. Otherwise the hidden one
+// lies beside it and takes the name; the folder around it must be there. Where files are in the
+// folder, mayReplace says of each whether it may be replaced, by its path in the folder, or why
+// not; nil replaces nothing, and the error wraps fs.ErrExist.
+//
+// An error of fill is returned as it is. A process that is killed leaves the hidden folder: in a
+// folder it counts as nothing. Killed while files move up, it leaves some of them.
+func WriteFolder(path string, mayReplace func(path string, e fs.DirEntry) error, fill func(folder string) error) error {
 	var errFill error
-	err = replaceFolder(hidden, name, mayReplace, func(part string) error {
-		errFill = fill(part)
+	err := writeFolder(path, mayReplace, func(folder string) error {
+		errFill = fill(folder)
 		return errFill
 	})
 	if err == nil || errFill != nil {
@@ -36,8 +33,106 @@ func WriteFolder(path string, mayReplace func(folder string) error, fill func(fo
 	return fmt.Errorf("write %s: %w", path, err)
 }
 
-// replaceFolder writes the folder inside a hidden one, which it removes.
-func replaceFolder(hidden, name string, mayReplace, fill func(string) error) (err error) {
+func writeFolder(path string, mayReplace func(string, fs.DirEntry) error, fill func(string) error) error {
+	name, err := folderName(path)
+	if err != nil {
+		return err
+	}
+	is, err := look(name)
+	switch {
+	case err != nil:
+		return err
+	case is == emptyFolder:
+		return fillEmpty(name, fill)
+	}
+	return replaceFolder(name, mayReplace, fill)
+}
+
+// What may stand where a folder shall be.
+const (
+	nothing = iota
+	emptyFolder
+	fullFolder
+)
+
+// look tells which of them does.
+func look(name string) (is int, err error) {
+	entries, err := os.ReadDir(name)
+	switch {
+	case errors.Is(err, fs.ErrNotExist):
+		return nothing, nil
+	case err != nil:
+		if info, errInfo := os.Stat(name); errInfo == nil && !info.IsDir() {
+			return nothing, errors.New("what is there is no folder")
+		}
+		return nothing, err
+	case slices.ContainsFunc(entries, func(e fs.DirEntry) bool { return !isLeft(e) }):
+		return fullFolder, nil
+	}
+	return emptyFolder, nil
+}
+
+// hiddenInside names the hidden folder in one that is filled; the system adds digits.
+const hiddenInside = ".part-"
+
+// isLeft reports whether an entry of a folder is a hidden one, of a process that was killed or
+// is at work.
+func isLeft(e fs.DirEntry) bool {
+	digits, ok := strings.CutPrefix(e.Name(), hiddenInside)
+	return ok && e.IsDir() && digits != "" && strings.Trim(digits, "0123456789") == ""
+}
+
+// fillEmpty writes into an empty folder.
+func fillEmpty(name string, fill func(string) error) (err error) {
+	hidden, err := os.MkdirTemp(name, hiddenInside+"*")
+	if err != nil {
+		return err
+	}
+	defer func() { err = errors.Join(err, os.RemoveAll(hidden)) }()
+	if err := fill(hidden); err != nil {
+		return err
+	}
+	if err := settle(hidden); err != nil {
+		return err
+	}
+	is, err := look(name)
+	if err == nil && is == fullFolder { // something came meanwhile
+		err = fs.ErrExist
+	}
+	if err != nil {
+		return err
+	}
+	return moveUp(hidden, name)
+}
+
+// moveUp has what is in the hidden folder move into the one around it. Where something cannot,
+// all is as before.
+func moveUp(hidden, name string) error {
+	entries, err := os.ReadDir(hidden)
+	if err != nil {
+		return err
+	}
+	for i, e := range entries {
+		if err := os.Rename(filepath.Join(hidden, e.Name()), filepath.Join(name, e.Name())); err != nil {
+			for _, e := range entries[:i] {
+				err = errors.Join(err, os.Rename(filepath.Join(name, e.Name()), filepath.Join(hidden, e.Name())))
+			}
+			return err
+		}
+	}
+	settleNames(name)
+	return nil
+}
+
+// replaceFolder writes a folder that takes the name.
+func replaceFolder(name string, mayReplace func(string, fs.DirEntry) error, fill func(string) error) (err error) {
+	if err := checkReplace(name, mayReplace); err != nil {
+		return err
+	}
+	hidden, err := os.MkdirTemp(filepath.Dir(name), "."+filepath.Base(name)+".part-*")
+	if err != nil {
+		return err
+	}
 	part, before := filepath.Join(hidden, "new"), filepath.Join(hidden, "before")
 	defer func() {
 		// The second is not empty where what was there could not be put back.
@@ -76,22 +171,28 @@ func folderName(path string) (string, error) {
 }
 
 // checkReplace returns why what is there may not be replaced, nil where nothing is.
-func checkReplace(name string, mayReplace func(string) error) error {
-	entries, err := os.ReadDir(name)
+func checkReplace(name string, mayReplace func(string, fs.DirEntry) error) error {
+	is, err := look(name)
 	switch {
-	case errors.Is(err, fs.ErrNotExist):
-		return nil
-	case err != nil:
-		if info, errInfo := os.Stat(name); errInfo == nil && !info.IsDir() {
-			return errors.New("what is there is no folder")
-		}
+	case err != nil || is != fullFolder:
 		return err
-	case len(entries) == 0:
-		return nil
 	case mayReplace == nil:
 		return fs.ErrExist
 	}
-	return mayReplace(name)
+	return filepath.WalkDir(name, func(path string, e fs.DirEntry, err error) error {
+		switch {
+		case err != nil:
+			return err
+		case e.IsDir() && isLeft(e) && filepath.Dir(path) == name:
+			return fs.SkipDir
+		case e.IsDir():
+			return nil
+		}
+		if path, err = filepath.Rel(name, path); err != nil {
+			return err
+		}
+		return mayReplace(path, e)
+	})
 }
 
 // settle waits until all that is in the folder is on the disk.

@@ -38,24 +38,96 @@ func TestFoldersAppearWhole(t *testing.T) {
 		t.Errorf("error %v, want that it is there", err)
 	}
 	refusal := errors.New("not mine")
-	if err := WriteFolder(folder, func(string) error { return refusal }, fillWith("second")); !errors.Is(err, refusal) {
+	if err := WriteFolder(folder, func(string, fs.DirEntry) error { return refusal }, fillWith("second")); !errors.Is(err, refusal) {
 		t.Errorf("error %v, want %v", err, refusal)
 	}
 	wantFile(t, "refused", folder, "first")
 	wantTree(t, "refused", dir, alone)
 
-	must(t, WriteFolder(folder, func(name string) error {
-		if filepath.Base(name) != "out" {
+	must(t, os.Mkdir(filepath.Join(folder, ".part-5"), 0o777), os.WriteFile(filepath.Join(folder, ".part-5", "torn"), nil, 0o666))
+	must(t, WriteFolder(folder, func(name string, e fs.DirEntry) error {
+		if name != filepath.Join("inner", "file") || e.Name() != "file" {
 			t.Errorf("asked whether %s may be replaced", name)
 		}
 		return nil
 	}, fillWith("second")))
 	wantFile(t, "replaced", folder, "second")
 	wantTree(t, "replaced", dir, alone)
+}
 
-	empty := filepath.Join(dir, "empty")
-	must(t, os.Mkdir(empty, 0o777), WriteFolder(empty, nil, fillWith("third")))
-	wantFile(t, "of an empty one", empty, "third")
+// mayReplaceAll is no bar.
+func mayReplaceAll(string, fs.DirEntry) error { return nil }
+
+// An empty folder is filled: it stays the one that it is, as a process sees that works in it, and
+// needs nothing of the folder around it.
+func TestEmptyFoldersAreFilled(t *testing.T) {
+	for what, mayReplace := range map[string]func(string, fs.DirEntry) error{"may replace nothing": nil, "may replace all": mayReplaceAll} {
+		dir := t.TempDir()
+		empty := filepath.Join(dir, "empty")
+		must(t, os.Mkdir(empty, 0o777))
+		before, err := os.Stat(empty)
+		must(t, err)
+		t.Chdir(empty)
+		must(t, WriteFolder(".", mayReplace, func(hidden string) error {
+			wantTree(t, what+", around it meanwhile", dir, map[string]string{"empty": "a folder"})
+			wantTree(t, what+", in it meanwhile", empty, map[string]string{filepath.Base(hidden): "a folder"})
+			return errors.Join(fillWith("x")(hidden), os.WriteFile(filepath.Join(hidden, "file"), []byte("y"), 0o666))
+		}))
+		wantFile(t, what, ".", "x")
+		wantTree(t, what, empty, map[string]string{"inner": "a folder", "file": "y"})
+		if after, err := os.Stat(empty); err != nil || !os.SameFile(before, after) {
+			t.Errorf("%s: it is another folder (%v)", what, err)
+		}
+	}
+}
+
+// What a process left that was killed while it filled a folder is nothing, and anything else
+// something.
+func TestLeftFoldersCountAsNothing(t *testing.T) {
+	for name, isNothing := range map[string]bool{".part-123": true, ".part-": false, ".part-12x": false, "part-1": false, ".git": false} {
+		folder := t.TempDir()
+		must(t, os.Mkdir(filepath.Join(folder, name), 0o777), os.WriteFile(filepath.Join(folder, name, "torn"), nil, 0o666))
+		err := WriteFolder(folder, nil, fillWith("x"))
+		if (err == nil) != isNothing || err != nil && !errors.Is(err, fs.ErrExist) {
+			t.Errorf("%s: error %v", name, err)
+		}
+		if _, err := os.Stat(filepath.Join(folder, name, "torn")); err != nil {
+			t.Errorf("%s: %v", name, err)
+		}
+	}
+	folder := t.TempDir()
+	must(t, os.WriteFile(filepath.Join(folder, ".part-123"), nil, 0o666))
+	if err := WriteFolder(folder, nil, fillWith("x")); !errors.Is(err, fs.ErrExist) {
+		t.Errorf("a file: error %v", err)
+	}
+}
+
+// An empty folder that could not be filled is empty again.
+func TestFailuresLeaveEmptyFoldersEmpty(t *testing.T) {
+	folder, failure := t.TempDir(), errors.New("disk full")
+	if err := WriteFolder(folder, nil, func(hidden string) error { return errors.Join(fillWith("x")(hidden), failure) }); err == nil || err.Error() != failure.Error() {
+		t.Errorf("error %v, want %v", err, failure)
+	}
+	wantTree(t, "failed", folder, nil)
+
+	// Something comes while it is written.
+	err := WriteFolder(folder, mayReplaceAll, func(hidden string) error {
+		return errors.Join(fillWith("x")(hidden), os.WriteFile(filepath.Join(folder, "theirs"), nil, 0o666))
+	})
+	if !errors.Is(err, fs.ErrExist) {
+		t.Errorf("error %v, want that it is there", err)
+	}
+	wantTree(t, "came meanwhile", folder, map[string]string{"theirs": ""})
+
+	// Something stands in the way of the last one.
+	hidden := filepath.Join(folder, ".part-1")
+	must(t, os.Mkdir(hidden, 0o777), fillWith("x")(hidden), os.WriteFile(filepath.Join(hidden, "file"), nil, 0o666), os.Mkdir(filepath.Join(hidden, "theirs"), 0o777))
+	if err := moveUp(hidden, folder); err == nil {
+		t.Error("a folder took the place of a file")
+	}
+	wantFile(t, "moved back", hidden, "x")
+	wantTree(t, "moved back", hidden, map[string]string{"inner": "a folder", "file": "", "theirs": "a folder"})
+	wantTree(t, "moved back", folder, map[string]string{"theirs": "", ".part-1": "a folder"})
 }
 
 func TestFailuresLeaveFoldersAsTheyAre(t *testing.T) {
@@ -70,7 +142,7 @@ func TestFailuresLeaveFoldersAsTheyAre(t *testing.T) {
 	}
 	wantTree(t, "failed", dir, nil)
 	must(t, WriteFolder(folder, nil, fillWith("first")))
-	if err := WriteFolder(folder, func(string) error { return nil }, fail("x")); !errors.Is(err, failure) {
+	if err := WriteFolder(folder, mayReplaceAll, fail("x")); !errors.Is(err, failure) {
 		t.Errorf("error %v, want %v", err, failure)
 	}
 	wantFile(t, "failed", folder, "first")
@@ -85,7 +157,7 @@ func TestFailuresLeaveFoldersAsTheyAre(t *testing.T) {
 
 	file := filepath.Join(dir, "file")
 	must(t, os.WriteFile(file, []byte("mine"), 0o666))
-	if err := WriteFolder(file, func(string) error { return nil }, fillWith("x")); err == nil {
+	if err := WriteFolder(file, mayReplaceAll, fillWith("x")); err == nil {
 		t.Error("a file was replaced by a folder")
 	}
 	if err := WriteFolder(filepath.Join(dir, "none", "out"), nil, fillWith("x")); !errors.Is(err, fs.ErrNotExist) {
@@ -104,7 +176,9 @@ func TestFoldersBehindLinks(t *testing.T) {
 	}
 	dir := t.TempDir()
 	real, link := filepath.Join(dir, "real"), filepath.Join(dir, "link")
-	must(t, os.Mkdir(real, 0o750), os.Symlink("real", link), WriteFolder(link, nil, fillWith("x")))
+	must(t, os.Mkdir(real, 0o750), os.Symlink("real", link), WriteFolder(link, nil, fillWith("first")))
+	wantFile(t, "through a link", real, "first")
+	must(t, WriteFolder(link, mayReplaceAll, fillWith("x")))
 	wantFile(t, "through a link", real, "x")
 	if info, err := os.Stat(real); err != nil || info.Mode().Perm() != 0o750 {
 		t.Errorf("the folder has another mode: %v, %v", info.Mode(), err)
