@@ -32,22 +32,39 @@ func nobodysStudy(t *testing.T) (s *faultStudy, asNobody func(*exec.Cmd) *exec.C
 	}
 	t.Cleanup(func() { os.RemoveAll(dir) })
 	s = newFaultStudy(t, dir)
+	return s, nobodysCommands(t, dir)
+}
+
+// nobodysCommands gives a folder, and a program in it, to a user whom modes of files bind, and returns
+// how commands run as his. One who is not the administrator is such a user.
+func nobodysCommands(t *testing.T, dir string) func(*exec.Cmd) *exec.Cmd {
+	t.Helper()
 	if os.Geteuid() != 0 {
-		return s, func(cmd *exec.Cmd) *exec.Cmd { return cmd }
+		return func(cmd *exec.Cmd) *exec.Cmd { return cmd }
 	}
+	own := filepath.Join(dir, "swaybook")
 	program, err := os.Executable()
-	s.check(err)
+	if err != nil {
+		t.Fatal(err)
+	}
 	text, err := os.ReadFile(program)
-	s.check(err)
-	s.check(os.WriteFile(s.at("swaybook"), text, 0o755))
-	s.check(filepath.WalkDir(dir, func(path string, _ fs.DirEntry, err error) error {
+	if err == nil {
+		err = os.WriteFile(own, text, 0o755)
+	}
+	if err != nil {
+		t.Fatal(err)
+	}
+	err = filepath.WalkDir(dir, func(path string, _ fs.DirEntry, err error) error {
 		if err != nil {
 			return err
 		}
 		return os.Lchown(path, nobody, nobody)
-	}))
-	return s, func(cmd *exec.Cmd) *exec.Cmd {
-		out := exec.Command(s.at("swaybook"), cmd.Args[1:]...)
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return func(cmd *exec.Cmd) *exec.Cmd {
+		out := exec.Command(own, cmd.Args[1:]...)
 		out.Dir = dir
 		out.SysProcAttr = &syscall.SysProcAttr{Credential: &syscall.Credential{Uid: nobody, Gid: nobody}}
 		return out

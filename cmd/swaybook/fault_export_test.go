@@ -11,6 +11,7 @@ import (
 	"path/filepath"
 	"regexp"
 	"slices"
+	"strings"
 	"syscall"
 	"testing"
 )
@@ -68,5 +69,60 @@ func TestExportsFillMountPoints(t *testing.T) {
 		if is := info.Sys().(*syscall.Stat_t); is.Gid != 4321 || info.IsDir() && info.Mode()&fs.ModeSetgid == 0 {
 			t.Errorf("%q: group %d, mode %v", name, is.Gid, info.Mode())
 		}
+	}
+}
+
+// refusedAtOnce runs an export that may replace a folder and cannot. It must say so by the words
+// given and leave all as it was; a limit on the size of files stops it where it writes any.
+func refusedAtOnce(t *testing.T, cmd *exec.Cmd, dir, words string) {
+	t.Helper()
+	before := treeOf(t, dir)
+	limited := exec.Command("sh", append([]string{"-c", `ulimit -f 64 && exec "$0" "$@"`, cmd.Path}, cmd.Args[1:]...)...)
+	limited.Dir, limited.SysProcAttr = cmd.Dir, cmd.SysProcAttr
+	text, _ := limited.CombinedOutput()
+	if limited.ProcessState.ExitCode() != exitFailed || !strings.Contains(string(text), words) || !strings.Contains(string(text), "it cannot be replaced by another folder: ") {
+		t.Errorf("exit code %d, %q, want %q", limited.ProcessState.ExitCode(), text, words)
+	}
+	if after := treeOf(t, dir); !maps.Equal(after, before) {
+		t.Errorf("%v is there, and was %v", slices.Sorted(maps.Keys(after)), slices.Sorted(maps.Keys(before)))
+	}
+}
+
+// A folder that cannot be replaced is told before anything is written.
+func TestExportsThatCannotReplaceSayItAtOnce(t *testing.T) {
+	dir, err := os.MkdirTemp("", "exports") // which others than its owner may enter
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() { os.RemoveAll(dir) })
+	if err := os.Chmod(dir, 0o755); err != nil {
+		t.Fatal(err)
+	}
+	store, around := storeOfAT2(t, dir), filepath.Join(dir, "around")
+	out := filepath.Join(around, "out")
+	if err := os.MkdirAll(out, 0o777); err != nil {
+		t.Fatal(err)
+	}
+	export := func() *exec.Cmd {
+		return exec.Command("swaybook", "--store", store, "export", "parquet", "--force", "--damping", "0,2%,5%,10%,20%", out)
+	}
+	t.Run("mount point", func(t *testing.T) {
+		mount(t, "tmpfs", out, "tmpfs", 0, "")
+		mustRun(t, export())
+		refusedAtOnce(t, export(), around, "it is a mount point (device or resource busy)")
+	})
+	mustRun(t, export())
+	as := nobodysCommands(t, dir)
+	mustRun(t, as(export()))
+	for what, path := range map[string]string{"folder around it": around, "folder": out} { // moving one changes it
+		t.Run(what, func(t *testing.T) {
+			if err := os.Chmod(path, 0o555); err != nil {
+				t.Fatal(err)
+			}
+			refusedAtOnce(t, as(export()), around, "permission denied")
+			if err := os.Chmod(path, 0o755); err != nil {
+				t.Fatal(err)
+			}
+		})
 	}
 }

@@ -6,8 +6,10 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"runtime"
 	"slices"
 	"strings"
+	"syscall"
 )
 
 // WriteFolder has fill write a folder's files into a hidden one, and has them take their places
@@ -17,7 +19,8 @@ import (
 // is worked in: the hidden one lies in it, and what is in that moves up. Otherwise the hidden one
 // lies beside it and takes the name; the folder around it must be there. Where files are in the
 // folder, mayReplace says of each whether it may be replaced, by its path in the folder, or why
-// not; nil replaces nothing, and the error wraps fs.ErrExist.
+// not; nil replaces nothing, and the error wraps fs.ErrExist. Before fill begins it is found out
+// whether the folder can be replaced.
 //
 // An error of fill is returned as it is. A process that is killed leaves the hidden folder: in a
 // folder it counts as nothing. Killed while files move up, it leaves some of them.
@@ -129,7 +132,7 @@ func replaceFolder(name string, mayReplace func(string, fs.DirEntry) error, fill
 	if err := checkReplace(name, mayReplace); err != nil {
 		return err
 	}
-	hidden, err := os.MkdirTemp(filepath.Dir(name), "."+filepath.Base(name)+".part-*")
+	hidden, err := makeBeside(name)
 	if err != nil {
 		return err
 	}
@@ -156,6 +159,62 @@ func replaceFolder(name string, mayReplace func(string, fs.DirEntry) error, fill
 		}
 	}
 	return exchange(part, name, before)
+}
+
+// makeBeside makes the hidden folder beside what is there, which must be such that it can be
+// moved into that.
+func makeBeside(name string) (hidden string, err error) {
+	hidden, err = os.MkdirTemp(filepath.Dir(name), "."+filepath.Base(name)+".part-*")
+	info, errThere := os.Stat(name)
+	if errThere != nil {
+		return hidden, err // nothing is there
+	}
+	if err == nil {
+		if err = checkMovable(name, info, hidden); err == nil {
+			return hidden, nil
+		}
+		err = errors.Join(err, os.Remove(hidden))
+	}
+	return "", fmt.Errorf("it cannot be replaced by another folder: %w; once it is empty it will be filled instead", err)
+}
+
+// checkMovable returns why a folder cannot be moved into another, without moving it: the place it
+// would go to is taken, which a system finds after all other reasons.
+func checkMovable(name string, info fs.FileInfo, into string) error {
+	switch {
+	case isWorkedIn(info):
+		return errors.New("it is the current directory, or holds it")
+	case runtime.GOOS == "windows": // has the same error for what is taken and what may not be
+		return nil
+	}
+	taken := filepath.Join(into, "taken")
+	if err := os.MkdirAll(filepath.Join(taken, "by"), 0o777); err != nil {
+		return err
+	}
+	err := syscall.Rename(name, taken) // os.Rename would not ask the system
+	switch {
+	case err == nil: // it has been moved, which no system should do
+		return errors.Join(errors.New("the system moves folders in the place of others"), syscall.Rename(taken, name))
+	case errors.Is(err, fs.ErrExist):
+		err = nil
+	case errors.Is(err, syscall.EBUSY):
+		err = fmt.Errorf("it is a mount point (%w)", err)
+	}
+	return errors.Join(err, os.RemoveAll(taken))
+}
+
+// isWorkedIn reports whether a folder is the current directory or around it.
+func isWorkedIn(info fs.FileInfo) bool {
+	here, err := os.Getwd()
+	if err == nil {
+		here, err = filepath.EvalSymlinks(here)
+	}
+	for above := ""; err == nil && here != above; above, here = here, filepath.Dir(here) {
+		if at, err := os.Stat(here); err == nil && os.SameFile(at, info) {
+			return true
+		}
+	}
+	return false
 }
 
 // folderName is what a path names, behind links.

@@ -170,6 +170,36 @@ func fillFolder(path string) error {
 	return errors.Join(os.Mkdir(path, 0o777), fillWith("theirs")(path))
 }
 
+// The current directory, and what it is in, are not replaced, and nothing is written for it; a
+// folder beside it is.
+func TestFoldersThatAreWorkedInStay(t *testing.T) {
+	dir := t.TempDir()
+	folder := filepath.Join(dir, "out")
+	must(t, WriteFolder(folder, nil, fillWith("first")))
+	before, err := os.Stat(folder)
+	must(t, err)
+	for _, here := range []string{folder, filepath.Join(folder, "inner")} {
+		t.Chdir(here)
+		err := WriteFolder(folder, mayReplaceAll, func(string) error {
+			t.Errorf("%s: it was written", here)
+			return nil
+		})
+		if err == nil || !strings.Contains(err.Error(), "current directory") {
+			t.Errorf("%s: error %v", here, err)
+		}
+		wantFile(t, here, folder, "first")
+		wantTree(t, here, dir, map[string]string{"out": "a folder"})
+	}
+	if after, err := os.Stat(folder); err != nil || !os.SameFile(before, after) {
+		t.Errorf("it is another folder (%v)", err)
+	}
+	beside := filepath.Join(dir, "outer")
+	must(t, os.Mkdir(beside, 0o777))
+	t.Chdir(beside)
+	must(t, WriteFolder(filepath.Join("..", "out"), mayReplaceAll, fillWith("second")))
+	wantFile(t, "from beside", folder, "second")
+}
+
 func TestFoldersBehindLinks(t *testing.T) {
 	if runtime.GOOS == "windows" {
 		t.Skip("links need a right there")
