@@ -217,11 +217,14 @@ func isWorkedIn(info fs.FileInfo) bool {
 	return false
 }
 
-// folderName is what a path names, behind links.
+// folderName is what a path names, behind links, which must lead to something.
 func folderName(path string) (string, error) {
 	name, err := filepath.EvalSymlinks(path)
 	if errors.Is(err, fs.ErrNotExist) {
-		name, err = path, nil
+		name, err = filepath.Clean(path), nil
+		if to, errLink := os.Readlink(name); errLink == nil {
+			return "", fmt.Errorf("it is a link to %s, and nothing is there", to)
+		}
 	}
 	if err != nil {
 		return "", err

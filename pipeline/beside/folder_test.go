@@ -217,3 +217,24 @@ func TestFoldersBehindLinks(t *testing.T) {
 		t.Errorf("the link is gone: %v", err)
 	}
 }
+
+// A link to nothing is no place for a folder, and stays.
+func TestLinksToNothing(t *testing.T) {
+	dir := t.TempDir()
+	link := filepath.Join(dir, "link")
+	if err := os.Symlink(filepath.Join("none", "out"), link); err != nil {
+		t.Skip(err)
+	}
+	for _, path := range []string{link, link + string(filepath.Separator)} {
+		err := WriteFolder(path, mayReplaceAll, func(string) error {
+			t.Errorf("%s: it was written", path)
+			return nil
+		})
+		if err == nil || !strings.Contains(err.Error(), "it is a link to "+filepath.Join("none", "out")) {
+			t.Errorf("%s: error %v", path, err)
+		}
+		if to, err := os.Readlink(link); err != nil || to != filepath.Join("none", "out") {
+			t.Errorf("%s: the link leads to %q, %v", path, to, err)
+		}
+	}
+}
