@@ -64,8 +64,8 @@ func runExportParquet(ctx context.Context, store *db.Store, o parquetOptions, w,
 		summary, err = o.question.Write(ctx, store, folder)
 		return err
 	})
-	if errors.Is(err, fs.ErrExist) {
-		return fmt.Errorf("%w; --force replaces an export", err)
+	if errors.Is(err, beside.ErrNotEmpty) && !o.force {
+		return fmt.Errorf("%w; --force replaces what an export left", err)
 	}
 	if err != nil {
 		return err

@@ -12,6 +12,9 @@ import (
 	"syscall"
 )
 
+// ErrNotEmpty is of a folder in which something is that may not be replaced.
+var ErrNotEmpty = errors.New("the folder is not empty")
+
 // WriteFolder has fill write a folder's files into a hidden one, and has them take their places
 // when all is on the disk: they are there whole, or all is as it was.
 //
@@ -19,7 +22,7 @@ import (
 // is worked in: the hidden one lies in it, and what is in that moves up. Otherwise the hidden one
 // lies beside it and takes the name; the folder around it must be there. Where files are in the
 // folder, mayReplace says of each whether it may be replaced, by its path in the folder, or why
-// not; nil replaces nothing, and the error wraps fs.ErrExist. Before fill begins it is found out
+// not; nil replaces nothing, and the error wraps ErrNotEmpty. Before fill begins it is found out
 // whether the folder can be replaced.
 //
 // An error of fill is returned as it is. A process that is killed leaves the hidden folder: in a
@@ -100,7 +103,7 @@ func fillEmpty(name string, fill func(string) error) (err error) {
 	}
 	is, err := look(name)
 	if err == nil && is == fullFolder { // something came meanwhile
-		err = fs.ErrExist
+		err = ErrNotEmpty
 	}
 	if err != nil {
 		return err
@@ -239,7 +242,7 @@ func checkReplace(name string, mayReplace func(string, fs.DirEntry) error) error
 	case err != nil || is != fullFolder:
 		return err
 	case mayReplace == nil:
-		return fs.ErrExist
+		return ErrNotEmpty
 	}
 	return filepath.WalkDir(name, func(path string, e fs.DirEntry, err error) error {
 		switch {

@@ -34,8 +34,8 @@ func TestFoldersAppearWhole(t *testing.T) {
 	wantFile(t, "new", folder, "first")
 	wantTree(t, "new", dir, alone)
 
-	if err := WriteFolder(folder, nil, fillWith("second")); !errors.Is(err, fs.ErrExist) || !strings.Contains(err.Error(), folder) {
-		t.Errorf("error %v, want that it is there", err)
+	if err := WriteFolder(folder, nil, fillWith("second")); !errors.Is(err, ErrNotEmpty) || !strings.Contains(err.Error(), folder) {
+		t.Errorf("error %v, want that it is not empty", err)
 	}
 	refusal := errors.New("not mine")
 	if err := WriteFolder(folder, func(string, fs.DirEntry) error { return refusal }, fillWith("second")); !errors.Is(err, refusal) {
@@ -88,7 +88,7 @@ func TestLeftFoldersCountAsNothing(t *testing.T) {
 		folder := t.TempDir()
 		must(t, os.Mkdir(filepath.Join(folder, name), 0o777), os.WriteFile(filepath.Join(folder, name, "torn"), nil, 0o666))
 		err := WriteFolder(folder, nil, fillWith("x"))
-		if (err == nil) != isNothing || err != nil && !errors.Is(err, fs.ErrExist) {
+		if (err == nil) != isNothing || err != nil && !errors.Is(err, ErrNotEmpty) {
 			t.Errorf("%s: error %v", name, err)
 		}
 		if _, err := os.Stat(filepath.Join(folder, name, "torn")); err != nil {
@@ -97,7 +97,7 @@ func TestLeftFoldersCountAsNothing(t *testing.T) {
 	}
 	folder := t.TempDir()
 	must(t, os.WriteFile(filepath.Join(folder, ".part-123"), nil, 0o666))
-	if err := WriteFolder(folder, nil, fillWith("x")); !errors.Is(err, fs.ErrExist) {
+	if err := WriteFolder(folder, nil, fillWith("x")); !errors.Is(err, ErrNotEmpty) {
 		t.Errorf("a file: error %v", err)
 	}
 }
@@ -114,8 +114,8 @@ func TestFailuresLeaveEmptyFoldersEmpty(t *testing.T) {
 	err := WriteFolder(folder, mayReplaceAll, func(hidden string) error {
 		return errors.Join(fillWith("x")(hidden), os.WriteFile(filepath.Join(folder, "theirs"), nil, 0o666))
 	})
-	if !errors.Is(err, fs.ErrExist) {
-		t.Errorf("error %v, want that it is there", err)
+	if !errors.Is(err, ErrNotEmpty) {
+		t.Errorf("error %v, want that it is not empty", err)
 	}
 	wantTree(t, "came meanwhile", folder, map[string]string{"theirs": ""})
 
@@ -150,8 +150,8 @@ func TestFailuresLeaveFoldersAsTheyAre(t *testing.T) {
 	// Something comes while it is written.
 	other := filepath.Join(dir, "other")
 	err := WriteFolder(other, nil, func(part string) error { return errors.Join(fillWith("x")(part), fillFolder(other)) })
-	if !errors.Is(err, fs.ErrExist) {
-		t.Errorf("error %v, want that it is there", err)
+	if !errors.Is(err, ErrNotEmpty) {
+		t.Errorf("error %v, want that it is not empty", err)
 	}
 	wantFile(t, "came meanwhile", other, "theirs")
 
