@@ -60,7 +60,7 @@ func runExportParquet(ctx context.Context, store *db.Store, o parquetOptions, w,
 		mayReplace = query.IsOfDataset
 	}
 	var summary *query.DatasetSummary
-	err := beside.WriteFolder(o.dir, mayReplace, func(folder string) (err error) {
+	err := beside.WriteFolder(ctx, o.dir, mayReplace, func(folder string) (err error) {
 		summary, err = o.question.Write(ctx, store, folder)
 		return err
 	})

@@ -1,6 +1,7 @@
 package beside
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"io/fs"
@@ -25,11 +26,12 @@ var ErrNotEmpty = errors.New("the folder is not empty")
 // not; nil replaces nothing, and the error wraps ErrNotEmpty. Before fill begins it is found out
 // whether the folder can be replaced.
 //
-// An error of fill is returned as it is. A process that is killed leaves the hidden folder: in a
+// An error of fill is returned as it is. Until files take their places the context stops it, with
+// nothing done. A process that is killed leaves the hidden folder: in a
 // folder it counts as nothing. Killed while files move up, it leaves some of them.
-func WriteFolder(path string, mayReplace func(path string, e fs.DirEntry) error, fill func(folder string) error) error {
+func WriteFolder(ctx context.Context, path string, mayReplace func(path string, e fs.DirEntry) error, fill func(folder string) error) error {
 	var errFill error
-	err := writeFolder(path, mayReplace, func(folder string) error {
+	err := writeFolder(ctx, path, mayReplace, func(folder string) error {
 		errFill = fill(folder)
 		return errFill
 	})
@@ -39,7 +41,7 @@ func WriteFolder(path string, mayReplace func(path string, e fs.DirEntry) error,
 	return fmt.Errorf("write %s: %w", path, err)
 }
 
-func writeFolder(path string, mayReplace func(string, fs.DirEntry) error, fill func(string) error) error {
+func writeFolder(ctx context.Context, path string, mayReplace func(string, fs.DirEntry) error, fill func(string) error) error {
 	name, err := folderName(path)
 	if err != nil {
 		return err
@@ -49,9 +51,9 @@ func writeFolder(path string, mayReplace func(string, fs.DirEntry) error, fill f
 	case err != nil:
 		return err
 	case is == emptyFolder:
-		return fillEmpty(name, fill)
+		return fillEmpty(ctx, name, fill)
 	}
-	return replaceFolder(name, mayReplace, fill)
+	return replaceFolder(ctx, name, mayReplace, fill)
 }
 
 // What may stand where a folder shall be.
@@ -89,7 +91,7 @@ func isLeft(e fs.DirEntry) bool {
 }
 
 // fillEmpty writes into an empty folder.
-func fillEmpty(name string, fill func(string) error) (err error) {
+func fillEmpty(ctx context.Context, name string, fill func(string) error) (err error) {
 	hidden, err := os.MkdirTemp(name, hiddenInside+"*")
 	if err != nil {
 		return err
@@ -98,7 +100,7 @@ func fillEmpty(name string, fill func(string) error) (err error) {
 	if err := fill(hidden); err != nil {
 		return err
 	}
-	if err := settle(hidden); err != nil {
+	if err := settle(ctx, hidden); err != nil {
 		return err
 	}
 	is, err := look(name)
@@ -131,7 +133,7 @@ func moveUp(hidden, name string) error {
 }
 
 // replaceFolder writes a folder that takes the name.
-func replaceFolder(name string, mayReplace func(string, fs.DirEntry) error, fill func(string) error) (err error) {
+func replaceFolder(ctx context.Context, name string, mayReplace func(string, fs.DirEntry) error, fill func(string) error) (err error) {
 	if err := checkReplace(name, mayReplace); err != nil {
 		return err
 	}
@@ -150,7 +152,7 @@ func replaceFolder(name string, mayReplace func(string, fs.DirEntry) error, fill
 	if err := fill(part); err != nil {
 		return err
 	}
-	if err := settle(part); err != nil {
+	if err := settle(ctx, part); err != nil {
 		return err
 	}
 	if err := checkReplace(name, mayReplace); err != nil { // it may have come meanwhile
@@ -260,10 +262,10 @@ func checkReplace(name string, mayReplace func(string, fs.DirEntry) error) error
 	})
 }
 
-// settle waits until all that is in the folder is on the disk.
-func settle(folder string) error {
+// settle waits until all that is in the folder is on the disk, which takes long where much is.
+func settle(ctx context.Context, folder string) error {
 	return filepath.WalkDir(folder, func(path string, e fs.DirEntry, err error) error {
-		if err != nil {
+		if err := errors.Join(err, ctx.Err()); err != nil {
 			return err
 		}
 		if e.IsDir() {

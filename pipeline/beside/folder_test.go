@@ -1,6 +1,7 @@
 package beside
 
 import (
+	"context"
 	"errors"
 	"io/fs"
 	"os"
@@ -30,22 +31,22 @@ func TestFoldersAppearWhole(t *testing.T) {
 	dir := t.TempDir()
 	folder := filepath.Join(dir, "out")
 	alone := map[string]string{"out": "a folder"}
-	must(t, WriteFolder(folder, nil, fillWith("first")))
+	must(t, WriteFolder(t.Context(), folder, nil, fillWith("first")))
 	wantFile(t, "new", folder, "first")
 	wantTree(t, "new", dir, alone)
 
-	if err := WriteFolder(folder, nil, fillWith("second")); !errors.Is(err, ErrNotEmpty) || !strings.Contains(err.Error(), folder) {
+	if err := WriteFolder(t.Context(), folder, nil, fillWith("second")); !errors.Is(err, ErrNotEmpty) || !strings.Contains(err.Error(), folder) {
 		t.Errorf("error %v, want that it is not empty", err)
 	}
 	refusal := errors.New("not mine")
-	if err := WriteFolder(folder, func(string, fs.DirEntry) error { return refusal }, fillWith("second")); !errors.Is(err, refusal) {
+	if err := WriteFolder(t.Context(), folder, func(string, fs.DirEntry) error { return refusal }, fillWith("second")); !errors.Is(err, refusal) {
 		t.Errorf("error %v, want %v", err, refusal)
 	}
 	wantFile(t, "refused", folder, "first")
 	wantTree(t, "refused", dir, alone)
 
 	must(t, os.Mkdir(filepath.Join(folder, ".part-5"), 0o777), os.WriteFile(filepath.Join(folder, ".part-5", "torn"), nil, 0o666))
-	must(t, WriteFolder(folder, func(name string, e fs.DirEntry) error {
+	must(t, WriteFolder(t.Context(), folder, func(name string, e fs.DirEntry) error {
 		if name != filepath.Join("inner", "file") || e.Name() != "file" {
 			t.Errorf("asked whether %s may be replaced", name)
 		}
@@ -68,7 +69,7 @@ func TestEmptyFoldersAreFilled(t *testing.T) {
 		before, err := os.Stat(empty)
 		must(t, err)
 		t.Chdir(empty)
-		must(t, WriteFolder(".", mayReplace, func(hidden string) error {
+		must(t, WriteFolder(t.Context(), ".", mayReplace, func(hidden string) error {
 			wantTree(t, what+", around it meanwhile", dir, map[string]string{"empty": "a folder"})
 			wantTree(t, what+", in it meanwhile", empty, map[string]string{filepath.Base(hidden): "a folder"})
 			return errors.Join(fillWith("x")(hidden), os.WriteFile(filepath.Join(hidden, "file"), []byte("y"), 0o666))
@@ -87,7 +88,7 @@ func TestLeftFoldersCountAsNothing(t *testing.T) {
 	for name, isNothing := range map[string]bool{".part-123": true, ".part-": false, ".part-12x": false, "part-1": false, ".git": false} {
 		folder := t.TempDir()
 		must(t, os.Mkdir(filepath.Join(folder, name), 0o777), os.WriteFile(filepath.Join(folder, name, "torn"), nil, 0o666))
-		err := WriteFolder(folder, nil, fillWith("x"))
+		err := WriteFolder(t.Context(), folder, nil, fillWith("x"))
 		if (err == nil) != isNothing || err != nil && !errors.Is(err, ErrNotEmpty) {
 			t.Errorf("%s: error %v", name, err)
 		}
@@ -97,7 +98,7 @@ func TestLeftFoldersCountAsNothing(t *testing.T) {
 	}
 	folder := t.TempDir()
 	must(t, os.WriteFile(filepath.Join(folder, ".part-123"), nil, 0o666))
-	if err := WriteFolder(folder, nil, fillWith("x")); !errors.Is(err, ErrNotEmpty) {
+	if err := WriteFolder(t.Context(), folder, nil, fillWith("x")); !errors.Is(err, ErrNotEmpty) {
 		t.Errorf("a file: error %v", err)
 	}
 }
@@ -105,13 +106,13 @@ func TestLeftFoldersCountAsNothing(t *testing.T) {
 // An empty folder that could not be filled is empty again.
 func TestFailuresLeaveEmptyFoldersEmpty(t *testing.T) {
 	folder, failure := t.TempDir(), errors.New("disk full")
-	if err := WriteFolder(folder, nil, func(hidden string) error { return errors.Join(fillWith("x")(hidden), failure) }); err == nil || err.Error() != failure.Error() {
+	if err := WriteFolder(t.Context(), folder, nil, func(hidden string) error { return errors.Join(fillWith("x")(hidden), failure) }); err == nil || err.Error() != failure.Error() {
 		t.Errorf("error %v, want %v", err, failure)
 	}
 	wantTree(t, "failed", folder, nil)
 
 	// Something comes while it is written.
-	err := WriteFolder(folder, mayReplaceAll, func(hidden string) error {
+	err := WriteFolder(t.Context(), folder, mayReplaceAll, func(hidden string) error {
 		return errors.Join(fillWith("x")(hidden), os.WriteFile(filepath.Join(folder, "theirs"), nil, 0o666))
 	})
 	if !errors.Is(err, ErrNotEmpty) {
@@ -137,19 +138,19 @@ func TestFailuresLeaveFoldersAsTheyAre(t *testing.T) {
 	fail := func(s string) func(string) error {
 		return func(folder string) error { return errors.Join(fillWith(s)(folder), failure) }
 	}
-	if err := WriteFolder(folder, nil, fail("x")); !errors.Is(err, failure) || err.Error() != failure.Error() {
+	if err := WriteFolder(t.Context(), folder, nil, fail("x")); !errors.Is(err, failure) || err.Error() != failure.Error() {
 		t.Errorf("error %v, want %v", err, failure)
 	}
 	wantTree(t, "failed", dir, nil)
-	must(t, WriteFolder(folder, nil, fillWith("first")))
-	if err := WriteFolder(folder, mayReplaceAll, fail("x")); !errors.Is(err, failure) {
+	must(t, WriteFolder(t.Context(), folder, nil, fillWith("first")))
+	if err := WriteFolder(t.Context(), folder, mayReplaceAll, fail("x")); !errors.Is(err, failure) {
 		t.Errorf("error %v, want %v", err, failure)
 	}
 	wantFile(t, "failed", folder, "first")
 
 	// Something comes while it is written.
 	other := filepath.Join(dir, "other")
-	err := WriteFolder(other, nil, func(part string) error { return errors.Join(fillWith("x")(part), fillFolder(other)) })
+	err := WriteFolder(t.Context(), other, nil, func(part string) error { return errors.Join(fillWith("x")(part), fillFolder(other)) })
 	if !errors.Is(err, ErrNotEmpty) {
 		t.Errorf("error %v, want that it is not empty", err)
 	}
@@ -157,10 +158,10 @@ func TestFailuresLeaveFoldersAsTheyAre(t *testing.T) {
 
 	file := filepath.Join(dir, "file")
 	must(t, os.WriteFile(file, []byte("mine"), 0o666))
-	if err := WriteFolder(file, mayReplaceAll, fillWith("x")); err == nil {
+	if err := WriteFolder(t.Context(), file, mayReplaceAll, fillWith("x")); err == nil {
 		t.Error("a file was replaced by a folder")
 	}
-	if err := WriteFolder(filepath.Join(dir, "none", "out"), nil, fillWith("x")); !errors.Is(err, fs.ErrNotExist) {
+	if err := WriteFolder(t.Context(), filepath.Join(dir, "none", "out"), nil, fillWith("x")); !errors.Is(err, fs.ErrNotExist) {
 		t.Errorf("error %v, want that there is no folder around it", err)
 	}
 	wantTree(t, "all", dir, map[string]string{"out": "a folder", "other": "a folder", "file": "mine"})
@@ -175,12 +176,12 @@ func fillFolder(path string) error {
 func TestFoldersThatAreWorkedInStay(t *testing.T) {
 	dir := t.TempDir()
 	folder := filepath.Join(dir, "out")
-	must(t, WriteFolder(folder, nil, fillWith("first")))
+	must(t, WriteFolder(t.Context(), folder, nil, fillWith("first")))
 	before, err := os.Stat(folder)
 	must(t, err)
 	for _, here := range []string{folder, filepath.Join(folder, "inner")} {
 		t.Chdir(here)
-		err := WriteFolder(folder, mayReplaceAll, func(string) error {
+		err := WriteFolder(t.Context(), folder, mayReplaceAll, func(string) error {
 			t.Errorf("%s: it was written", here)
 			return nil
 		})
@@ -196,7 +197,7 @@ func TestFoldersThatAreWorkedInStay(t *testing.T) {
 	beside := filepath.Join(dir, "outer")
 	must(t, os.Mkdir(beside, 0o777))
 	t.Chdir(beside)
-	must(t, WriteFolder(filepath.Join("..", "out"), mayReplaceAll, fillWith("second")))
+	must(t, WriteFolder(t.Context(), filepath.Join("..", "out"), mayReplaceAll, fillWith("second")))
 	wantFile(t, "from beside", folder, "second")
 }
 
@@ -206,9 +207,9 @@ func TestFoldersBehindLinks(t *testing.T) {
 	}
 	dir := t.TempDir()
 	real, link := filepath.Join(dir, "real"), filepath.Join(dir, "link")
-	must(t, os.Mkdir(real, 0o750), os.Symlink("real", link), WriteFolder(link, nil, fillWith("first")))
+	must(t, os.Mkdir(real, 0o750), os.Symlink("real", link), WriteFolder(t.Context(), link, nil, fillWith("first")))
 	wantFile(t, "through a link", real, "first")
-	must(t, WriteFolder(link, mayReplaceAll, fillWith("x")))
+	must(t, WriteFolder(t.Context(), link, mayReplaceAll, fillWith("x")))
 	wantFile(t, "through a link", real, "x")
 	if info, err := os.Stat(real); err != nil || info.Mode().Perm() != 0o750 {
 		t.Errorf("the folder has another mode: %v, %v", info.Mode(), err)
@@ -216,6 +217,25 @@ func TestFoldersBehindLinks(t *testing.T) {
 	if info, err := os.Lstat(link); err != nil || info.Mode()&fs.ModeSymlink == 0 {
 		t.Errorf("the link is gone: %v", err)
 	}
+}
+
+// Who is stopped while files go to the disk leaves nothing.
+func TestFoldersAreStopped(t *testing.T) {
+	dir := t.TempDir()
+	empty := filepath.Join(dir, "empty")
+	must(t, os.Mkdir(empty, 0o777))
+	for _, folder := range []string{empty, filepath.Join(dir, "new")} {
+		ctx, cancel := context.WithCancel(t.Context())
+		err := WriteFolder(ctx, folder, nil, func(folder string) error {
+			cancel()
+			return fillWith("x")(folder)
+		})
+		if !errors.Is(err, context.Canceled) {
+			t.Errorf("%s: error %v", folder, err)
+		}
+	}
+	wantTree(t, "stopped", dir, map[string]string{"empty": "a folder"})
+	wantTree(t, "stopped", empty, nil)
 }
 
 // A link to nothing is no place for a folder, and stays.
@@ -226,7 +246,7 @@ func TestLinksToNothing(t *testing.T) {
 		t.Skip(err)
 	}
 	for _, path := range []string{link, link + string(filepath.Separator)} {
-		err := WriteFolder(path, mayReplaceAll, func(string) error {
+		err := WriteFolder(t.Context(), path, mayReplaceAll, func(string) error {
 			t.Errorf("%s: it was written", path)
 			return nil
 		})
