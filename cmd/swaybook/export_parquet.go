@@ -67,7 +67,9 @@ func runExportParquet(ctx context.Context, store *db.Store, o parquetOptions, w,
 	if errors.Is(err, beside.ErrNotEmpty) && !o.force {
 		return fmt.Errorf("%w; --force replaces what an export left", err)
 	}
-	if err != nil {
+	if left, ok := errors.AsType[*beside.LeftError](err); ok {
+		fmt.Fprintf(stderr, "note: %v\n", left)
+	} else if err != nil {
 		return err
 	}
 	fmt.Fprint(stderr, summary.Selection.Remarks())

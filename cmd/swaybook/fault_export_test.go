@@ -90,14 +90,7 @@ func refusedAtOnce(t *testing.T, cmd *exec.Cmd, dir, words string) {
 
 // A folder that cannot be replaced is told before anything is written.
 func TestExportsThatCannotReplaceSayItAtOnce(t *testing.T) {
-	dir, err := os.MkdirTemp("", "exports") // which others than its owner may enter
-	if err != nil {
-		t.Fatal(err)
-	}
-	t.Cleanup(func() { os.RemoveAll(dir) })
-	if err := os.Chmod(dir, 0o755); err != nil {
-		t.Fatal(err)
-	}
+	dir := openDir(t)
 	store, around := storeOfAT2(t, dir), filepath.Join(dir, "around")
 	out := filepath.Join(around, "out")
 	if err := os.MkdirAll(out, 0o777); err != nil {
@@ -124,5 +117,53 @@ func TestExportsThatCannotReplaceSayItAtOnce(t *testing.T) {
 				t.Fatal(err)
 			}
 		})
+	}
+}
+
+// openDir is a folder that others than its owner may enter.
+func openDir(t *testing.T) string {
+	t.Helper()
+	dir, err := os.MkdirTemp("", "exports")
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Cleanup(func() { os.RemoveAll(dir) })
+	if err := os.Chmod(dir, 0o755); err != nil {
+		t.Fatal(err)
+	}
+	return dir
+}
+
+// An export is done where what it replaced cannot be removed, and says what is left.
+func TestExportsThatCannotRemoveTheOldAreDone(t *testing.T) {
+	dir := openDir(t)
+	store := storeOfAT2(t, dir)
+	around := filepath.Join(dir, "around")
+	out := filepath.Join(around, "out")
+	export := exec.Command("swaybook", "--store", store, "export", "parquet", "--force", out)
+	if err := os.Mkdir(around, 0o777); err != nil {
+		t.Fatal(err)
+	}
+	as := nobodysCommands(t, dir)
+	mustRun(t, as(export))
+	before, err := os.Stat(out)
+	if err == nil {
+		err = os.Chmod(filepath.Join(out, "records"), 0o555)
+	}
+	if err != nil {
+		t.Fatal(err)
+	}
+	text, err := as(export).CombinedOutput()
+	note := regexp.MustCompile(`(?m)^note: (.*/around/\.out\.part-[0-9]+) is left: .*records/part-0001\.parquet: permission denied$`).FindSubmatch(text)
+	if err != nil || note == nil {
+		t.Fatalf("%v, %q", err, text)
+	}
+	old, errOld := os.Stat(filepath.Join(string(note[1]), "before"))
+	now, errNow := os.Stat(out)
+	if errOld != nil || errNow != nil || !os.SameFile(before, old) || os.SameFile(before, now) {
+		t.Errorf("before %v, %v; now %v, %v", old, errOld, now, errNow)
+	}
+	if err := os.Chmod(filepath.Join(string(note[1]), "before", "records"), 0o755); err != nil {
+		t.Error(err)
 	}
 }

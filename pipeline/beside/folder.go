@@ -16,6 +16,18 @@ import (
 // ErrNotEmpty is of a folder in which something is that may not be replaced.
 var ErrNotEmpty = errors.New("the folder is not empty")
 
+// LeftError says that a folder is written, whole and in its place, and that a hidden one, with
+// what was there before, could not be removed.
+type LeftError struct {
+	Folder string // the hidden one
+	Err    error
+}
+
+func (e *LeftError) Error() string { return fmt.Sprintf("%s is left: %v", e.Folder, e.Err) }
+
+// Unwrap returns the cause.
+func (e *LeftError) Unwrap() error { return e.Err }
+
 // WriteFolder has fill write a folder's files into a hidden one, and has them take their places
 // when all is on the disk: they are there whole, or all is as it was.
 //
@@ -26,16 +38,17 @@ var ErrNotEmpty = errors.New("the folder is not empty")
 // not; nil replaces nothing, and the error wraps ErrNotEmpty. Before fill begins it is found out
 // whether the folder can be replaced.
 //
-// An error of fill is returned as it is. Until files take their places the context stops it, with
-// nothing done. A process that is killed leaves the hidden folder: in a
-// folder it counts as nothing. Killed while files move up, it leaves some of them.
+// An error of fill is returned as it is, and a LeftError where nothing else went wrong. Until
+// files take their places the context stops it, with nothing done. A process that is killed leaves
+// the hidden folder: in a folder it counts as nothing. Killed while files move up, it leaves some
+// of them.
 func WriteFolder(ctx context.Context, path string, mayReplace func(path string, e fs.DirEntry) error, fill func(folder string) error) error {
 	var errFill error
 	err := writeFolder(ctx, path, mayReplace, func(folder string) error {
 		errFill = fill(folder)
 		return errFill
 	})
-	if err == nil || errFill != nil {
+	if _, isLeft := errors.AsType[*LeftError](err); err == nil || errFill != nil || isLeft {
 		return err
 	}
 	return fmt.Errorf("write %s: %w", path, err)
@@ -96,7 +109,7 @@ func fillEmpty(ctx context.Context, name string, fill func(string) error) (err e
 	if err != nil {
 		return err
 	}
-	defer func() { err = errors.Join(err, os.RemoveAll(hidden)) }()
+	defer func() { err = cleared(err, hidden, os.RemoveAll(hidden)) }()
 	if err := fill(hidden); err != nil {
 		return err
 	}
@@ -143,6 +156,10 @@ func replaceFolder(ctx context.Context, name string, mayReplace func(string, fs.
 	}
 	part, before := filepath.Join(hidden, "new"), filepath.Join(hidden, "before")
 	defer func() {
+		if err == nil {
+			err = cleared(nil, hidden, os.RemoveAll(hidden))
+			return
+		}
 		// The second is not empty where what was there could not be put back.
 		err = errors.Join(err, os.RemoveAll(part), os.Remove(hidden))
 	}()
@@ -164,6 +181,14 @@ func replaceFolder(ctx context.Context, name string, mayReplace func(string, fs.
 		}
 	}
 	return exchange(part, name, before)
+}
+
+// cleared is the error of a folder whose hidden one was removed, or why not.
+func cleared(err error, hidden string, errRemove error) error {
+	if err == nil && errRemove != nil {
+		return &LeftError{hidden, errRemove}
+	}
+	return errors.Join(err, errRemove)
 }
 
 // makeBeside makes the hidden folder beside what is there, which must be such that it can be
@@ -288,7 +313,8 @@ func settleNames(folder string) {
 	}
 }
 
-// exchange has the folder take the name. Where it cannot, all is as before.
+// exchange has the folder take the name, and what was there another. Where it cannot, all is as
+// before.
 func exchange(part, name, before string) error {
 	err := os.Rename(name, before)
 	isThere := err == nil
@@ -302,8 +328,5 @@ func exchange(part, name, before string) error {
 		return err
 	}
 	settleNames(filepath.Dir(name))
-	if isThere {
-		return os.RemoveAll(before)
-	}
 	return nil
 }
