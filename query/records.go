@@ -80,12 +80,13 @@ type RecordRow struct {
 }
 
 // FindingRow is one thing that is wrong with a component: the value measured and the bound
-// that it is beyond, of a share without unit, else in s.
+// that it is beyond, both in Unit. Rows that say the same are equal: a unit is there once.
 type FindingRow struct {
 	Flag  string  `json:"flag" parquet:"flag,dict"`
 	Of    string  `json:"of" parquet:"of,dict"` // "delivered" or "conditioned"
 	Value float64 `json:"value" parquet:"value"`
 	Bound float64 `json:"bound" parquet:"bound"`
+	Unit  *string `json:"unit" parquet:"unit"` // nil of ratios and counts
 	Words string  `json:"words" parquet:"words"`
 }
 
@@ -227,7 +228,7 @@ func findingRows(c *db.HeldComponent) []FindingRow {
 	rows := make([]FindingRow, 0, len(c.Findings))
 	add := func(of string, found []db.Finding) {
 		for _, f := range found {
-			rows = append(rows, FindingRow{Flag: f.Flag, Of: of, Value: f.Value, Bound: f.Bound, Words: f.Words})
+			rows = append(rows, FindingRow{Flag: f.Flag, Of: of, Value: f.Value, Bound: f.Bound, Unit: unitOfFlag(f.Flag), Words: f.Words})
 		}
 	}
 	add(ofDelivered, c.Findings)

@@ -60,29 +60,43 @@ type kind struct {
 	name   string
 	of     func(*qualityFlags) *bool // where an expression sees it
 	screen Screen                    // the mildest that leaves it out, "" for none
+	unit   *string                   // of the numbers of a finding, nil for ratios and counts
 	// isLeft says that it counts of the motion as the recipe left it, which is what the
 	// spectrum is of.
 	isLeft bool
 }
 
+// seconds is the unit of findings that are about times.
+var seconds = new("s")
+
 // flags are all of them, in the order in which they count as reasons.
 var flags = []kind{
-	{"clipped", func(q *qualityFlags) *bool { return &q.Clipped }, ScreenNormal, false},
-	{"lost_data", func(q *qualityFlags) *bool { return &q.LostData }, ScreenNormal, false},
-	{"duplicated", func(q *qualityFlags) *bool { return &q.Duplicated }, ScreenNormal, false},
-	{"low_signal", func(q *qualityFlags) *bool { return &q.LowSignal }, ScreenNormal, false},
-	{"spikes", func(q *qualityFlags) *bool { return &q.Spikes }, ScreenStrict, false},
-	{"peak_mismatch", func(q *qualityFlags) *bool { return &q.PeakMismatch }, ScreenStrict, false},
-	{"irregular_sampling", func(q *qualityFlags) *bool { return &q.Irregular }, ScreenStrict, false},
-	{"late_start", func(q *qualityFlags) *bool { return &q.LateStart }, ScreenStrict, false},
-	{"early_end", func(q *qualityFlags) *bool { return &q.EarlyEnd }, ScreenStrict, false},
-	{"several_events", func(q *qualityFlags) *bool { return &q.SeveralEvents }, ScreenStrict, false},
-	{"offset", func(q *qualityFlags) *bool { return &q.Offset }, ScreenStrict, true},
-	{"baseline_step", func(q *qualityFlags) *bool { return &q.BaselineStep }, ScreenStrict, true},
-	{"drift", func(q *qualityFlags) *bool { return &q.Drift }, ScreenStrict, true},
-	{"final_velocity", func(q *qualityFlags) *bool { return &q.FinalVelocity }, ScreenStrict, true},
-	{"final_displacement", func(q *qualityFlags) *bool { return &q.FinalDisplacement }, ScreenStrict, true},
-	{"no_pre_event", func(q *qualityFlags) *bool { return &q.NoPreEvent }, "", false},
+	{"clipped", func(q *qualityFlags) *bool { return &q.Clipped }, ScreenNormal, nil, false},
+	{"lost_data", func(q *qualityFlags) *bool { return &q.LostData }, ScreenNormal, seconds, false},
+	{"duplicated", func(q *qualityFlags) *bool { return &q.Duplicated }, ScreenNormal, nil, false},
+	{"low_signal", func(q *qualityFlags) *bool { return &q.LowSignal }, ScreenNormal, nil, false},
+	{"spikes", func(q *qualityFlags) *bool { return &q.Spikes }, ScreenStrict, nil, false},
+	{"peak_mismatch", func(q *qualityFlags) *bool { return &q.PeakMismatch }, ScreenStrict, nil, false},
+	{"irregular_sampling", func(q *qualityFlags) *bool { return &q.Irregular }, ScreenStrict, seconds, false},
+	{"late_start", func(q *qualityFlags) *bool { return &q.LateStart }, ScreenStrict, nil, false},
+	{"early_end", func(q *qualityFlags) *bool { return &q.EarlyEnd }, ScreenStrict, nil, false},
+	{"several_events", func(q *qualityFlags) *bool { return &q.SeveralEvents }, ScreenStrict, seconds, false},
+	{"offset", func(q *qualityFlags) *bool { return &q.Offset }, ScreenStrict, nil, true},
+	{"baseline_step", func(q *qualityFlags) *bool { return &q.BaselineStep }, ScreenStrict, nil, true},
+	{"drift", func(q *qualityFlags) *bool { return &q.Drift }, ScreenStrict, nil, true},
+	{"final_velocity", func(q *qualityFlags) *bool { return &q.FinalVelocity }, ScreenStrict, nil, true},
+	{"final_displacement", func(q *qualityFlags) *bool { return &q.FinalDisplacement }, ScreenStrict, nil, true},
+	{"no_pre_event", func(q *qualityFlags) *bool { return &q.NoPreEvent }, "", seconds, false},
+}
+
+// unitOfFlag is the unit of what is measured where a flag is raised, nil for ratios and counts.
+func unitOfFlag(flag string) *string {
+	for _, known := range flags {
+		if known.name == flag {
+			return known.unit
+		}
+	}
+	return nil
 }
 
 // qualityOf is what counts of the components' findings.

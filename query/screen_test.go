@@ -32,6 +32,20 @@ func TestFlagsAreTheOnesThatAreRaised(t *testing.T) {
 	}
 }
 
+// What is measured for these flags is a time; of the others it is a ratio or a number of things.
+func TestUnitsOfFindings(t *testing.T) {
+	inSeconds := []string{"irregular_sampling", quality.FlagLostData, quality.FlagNoPreEvent, quality.FlagSeveralEvents}
+	for _, f := range flags {
+		unit := unitOfFlag(f.name)
+		if slices.Contains(inSeconds, f.name) != (unit != nil) || unit != nil && *unit != "s" {
+			t.Errorf("%s has the unit %v", f.name, unit)
+		}
+	}
+	if unit := unitOfFlag("invented"); unit != nil {
+		t.Errorf("an unknown flag has the unit %s", *unit)
+	}
+}
+
 // screenStore has a pair for each flag, the flag on its second horizontal, and a good
 // one.
 func screenStore(t *testing.T) *db.Store {
@@ -138,10 +152,11 @@ func TestQualityInExpressions(t *testing.T) {
 
 // What was found keeps its value apart from its bound, whatever lists it.
 func TestRowsOfFindings(t *testing.T) {
-	c := &db.HeldComponent{Component: db.Component{Findings: []db.Finding{{Flag: "drift", Value: 0.3, Bound: 0.25, Words: "drifts"}}}}
+	c := &db.HeldComponent{Component: db.Component{Findings: []db.Finding{{Flag: "drift", Value: 0.3, Bound: 0.25, Words: "drifts"}, {Flag: "lost_data", Value: 0.5, Bound: 0.2, Words: "lost"}}}}
 	c.Conditioning = &db.Conditioning{Findings: []db.Finding{{Flag: "early_end", Value: 0.02, Bound: 0.01, Words: "ends early"}}}
 	want := []FindingRow{
 		{Flag: "drift", Of: ofDelivered, Value: 0.3, Bound: 0.25, Words: "drifts"},
+		{Flag: "lost_data", Of: ofDelivered, Value: 0.5, Bound: 0.2, Unit: seconds, Words: "lost"},
 		{Flag: "early_end", Of: ofConditioned, Value: 0.02, Bound: 0.01, Words: "ends early"},
 	}
 	if got := findingRows(c); !slices.Equal(got, want) {
