@@ -82,8 +82,9 @@ func (t *Tx) PutEdition(ctx context.Context, runID, generationID int64) (isNew b
 		}
 		isNew = isNew || changed
 	}
+	t.hasEditions = true
 	if !isNew {
-		return false, t.layOut(ctx, 0)
+		return false, nil
 	}
 	if err := t.exec(ctx, `INSERT INTO edition (id, generation_id, state) VALUES (?, ?, ?)`, runID, generationID, EditionHeld); err != nil {
 		return false, fmt.Errorf("make edition: %w", err)
@@ -91,7 +92,8 @@ func (t *Tx) PutEdition(ctx context.Context, runID, generationID int64) (isNew b
 	if err := t.sealEdition(ctx, runID); err != nil {
 		return false, err
 	}
-	return true, t.layOut(ctx, runID)
+	t.made = runID
+	return true, nil
 }
 
 // show ends the rows of the newest edition that are no longer those of the table, and
@@ -143,7 +145,8 @@ func (t *Tx) Publish(ctx context.Context, id int64) error {
 	if err != nil {
 		return fmt.Errorf("publish edition: %w", err)
 	}
-	return t.layOut(ctx, 0)
+	t.hasEditions = true
+	return nil
 }
 
 // NewestEdition returns the edition of the last run that made one; ok is false where there

@@ -15,7 +15,7 @@ type layout struct {
 	name, part string
 	columns    []string
 	order      string
-	// from is the table, of which the columns are, under the name x, or "" for the edition's own.
+	// from is the table, of which the columns are, under the name x, nil for the edition's own.
 	from func(shown tables) string
 }
 
@@ -66,12 +66,9 @@ func (l *layout) query(shown tables, columns []string, condition string) string 
 }
 
 // layOut lays out the newest edition and the published one, where they are not, and no other:
-// what else there is of editions is asked about too seldom. One that is made just now, if any,
-// is known to be what its seals say.
-func (t *Tx) layOut(ctx context.Context, made int64) error {
-	if err := t.writeTile(ctx); err != nil { // to tell where its spectra are
-		return err
-	}
+// what else there is of editions is asked about too seldom. One that the transaction has made is
+// known to be what its seals say.
+func (t *Tx) layOut(ctx context.Context) error {
 	rows, err := t.tx.QueryContext(ctx, `SELECT id, generation_id, state FROM edition WHERE id = (SELECT max(id) FROM edition) OR `+isPublished+` ORDER BY id DESC`)
 	if err != nil {
 		return fmt.Errorf("lay out editions: %w", err)
@@ -88,7 +85,7 @@ func (t *Tx) layOut(ctx context.Context, made int64) error {
 		return fmt.Errorf("lay out editions: %w", err)
 	}
 	for i, id := range ids {
-		if err := t.layOutOne(ctx, id, ofEdition(id, i == 0), id == made); err != nil {
+		if err := t.layOutOne(ctx, id, ofEdition(id, i == 0), id == t.made); err != nil {
 			return fmt.Errorf("lay out edition %d: %w", id, err)
 		}
 	}

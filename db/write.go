@@ -13,6 +13,9 @@ import (
 type Tx struct {
 	tx    session
 	begun tileBegun
+	// hasEditions says that editions have come or changed, to be laid out; made is that which came, 0 for none.
+	hasEditions bool
+	made        int64
 }
 
 var errReading = errors.New("store is open for reading only")
@@ -30,6 +33,14 @@ func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 	return err
 }
 
+// finish does what is left to the end, since more of it may come until then.
+func (t *Tx) finish(ctx context.Context) error {
+	if err := t.writeTile(ctx); err != nil || !t.hasEditions {
+		return err
+	}
+	return t.layOut(ctx) // tiles tell where spectra are
+}
+
 func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) (err error) {
 	defer func() { err = explain(err) }()
 	tx, err := write.BeginTx(ctx, nil)
@@ -41,7 +52,7 @@ func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) (err error)
 	if err := f(t); err != nil {
 		return err
 	}
-	if err := t.writeTile(ctx); err != nil {
+	if err := t.finish(ctx); err != nil {
 		return err
 	}
 	if err := tx.Commit(); err != nil {
