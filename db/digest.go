@@ -182,19 +182,17 @@ func stamp(at time.Time) string {
 // computed reads the spectra as the bytes that they are stored as, which are one for each
 // value, tile by tile.
 func (d *digester) computed(ctx context.Context) error {
-	rows, err := d.snapshot.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, coalesce(x.failure, ''), s.tile_id, s.place, s.crc32c, coalesce(t.motions, 0)
-		FROM `+d.snapshot.shown("computed")+` k JOIN computation x ON x.id = k.computation_id
-		LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id ORDER BY s.tile_id, s.place`)
+	rows, err := d.snapshot.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, coalesce(x.failure, ''), `+placeOfSpectra+`
+		FROM `+d.snapshot.shown("computed")+` k JOIN computation x ON x.id = k.computation_id`+besideComputed+` ORDER BY s.tile_id, s.place`)
 	if err != nil {
 		return err
 	}
 	type row struct {
 		location
-		placing
 		role, failure string
 	}
 	found, err := collect(rows, func(v *row) []any {
-		return []any{&v.record, &v.role, &v.computation, &v.failure, &v.placing.tile, &v.placing.place, &v.seal, &v.motions}
+		return []any{&v.record, &v.role, &v.computation, &v.failure, &v.tile, &v.place, &v.motions}
 	})
 	if err != nil {
 		return err
@@ -203,8 +201,8 @@ func (d *digester) computed(ctx context.Context) error {
 	tiles := &tileReader{q: d.snapshot.tx}
 	for _, v := range found {
 		var spectra []storedSpectrum
-		if l := v.of(v.location); l.tile != 0 {
-			if spectra, err = tiles.at(ctx, l, len(grid.Dampings), len(grid.PeriodsS)); err != nil {
+		if v.tile != 0 {
+			if spectra, err = tiles.at(ctx, v.location, len(grid.Dampings), len(grid.PeriodsS)); err != nil {
 				return err
 			}
 		}

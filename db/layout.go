@@ -34,11 +34,7 @@ var layouts = []layout{
 	{name: "finding", part: "flag", columns: words(`component_id flag value bound words`), order: `component_id`},
 	{name: "computed", part: "role", columns: words(`record_id role computation_id tile_id place motions`), order: `record_id`,
 		from: func(shown tables) string {
-			return `(SELECT k.record_id, k.role, k.computation_id,
-				CASE WHEN s.tile_id IS NULL THEN 0
-					WHEN s.crc32c = crc32c(k.computation_id, s.tile_id, s.place) AND s.place BETWEEN 0 AND coalesce(t.motions, 0) - 1 THEN s.tile_id
-					ELSE -1 END AS tile_id, coalesce(s.place, 0) AS place, coalesce(t.motions, 0) AS motions
-				FROM ` + shown("computed") + ` k LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id) x`
+			return `(SELECT k.record_id, k.role, k.computation_id, ` + placeOfSpectra + ` FROM ` + shown("computed") + ` k` + besideComputed + `) x`
 		}},
 	{name: sealedConditioning, columns: words(`record_id role computation_id step_s samples lead_s low_cut_hz high_cut_hz long_s`), order: `record_id, role`,
 		from: func(shown tables) string {

@@ -1,9 +1,6 @@
 package db
 
-import (
-	"context"
-	"database/sql"
-)
+import "context"
 
 // location is where the spectra of a record's role are: in a tile, at one of as many places as it
 // has motions. The tile is 0 where there are no spectra, and damagedTile where nobody knows.
@@ -13,6 +10,15 @@ type location struct {
 }
 
 const damagedTile = -1
+
+// Where the spectra of a row k, which has a computation, are: as a location has it, of rows s and
+// t that stand beside it.
+const (
+	placeOfSpectra = `CASE WHEN s.tile_id IS NULL THEN 0
+		WHEN s.crc32c = crc32c(s.computation_id, s.tile_id, s.place) AND s.place BETWEEN 0 AND coalesce(t.motions, 0) - 1 THEN s.tile_id
+		ELSE -1 END AS tile_id, coalesce(s.place, 0) AS place, coalesce(t.motions, 0) AS motions`
+	besideComputed = ` LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id`
+)
 
 // located tells where the spectra of a role are, in the order of the records' ids, read once.
 func (s *Snapshot) located(ctx context.Context, role string) ([]location, error) {
@@ -40,17 +46,4 @@ func (s *Snapshot) locatedIn(ctx context.Context, role string) (out []location, 
 		return nil
 	})
 	return out, err
-}
-
-// placing is a row of spectrum, NULL of one that is not there.
-type placing struct{ tile, place, seal sql.NullInt64 }
-
-// of is a location, of whose tile the motions are known, with what the row says.
-func (p placing) of(l location) location {
-	l.tile, l.place = p.tile.Int64, int(p.place.Int64)
-	isDamaged := p.seal.Int64 != placeSeal(l.computation, p.tile.Int64, p.place.Int64) || l.place < 0 || l.place >= l.motions
-	if p.seal.Valid && isDamaged {
-		l.tile, l.motions = damagedTile, 0
-	}
-	return l
 }

@@ -54,17 +54,6 @@ func appendPart(dst []byte, spectra [][]byte, periods Span) []byte {
 	return dst
 }
 
-// placeSeal is the checksum of a row of spectrum, as crc32c in SQL makes it of the three.
-func placeSeal(computation, tile, place int64) int64 {
-	const width = 1 + 8
-	var text [3 * width]byte
-	for i, x := range [...]int64{computation, tile, place} {
-		text[width*i] = width
-		binary.LittleEndian.PutUint64(text[width*i+1:], uint64(x))
-	}
-	return sealOf(text[:])
-}
-
 // tileBegun is a tile that a transaction fills, and writes before it is committed.
 type tileBegun struct {
 	id         int64 // 0 for none
@@ -97,7 +86,7 @@ func (t *Tx) placeSpectra(ctx context.Context, computationID, generationID int64
 	}
 	place := int64(len(b.motions))
 	if err := t.exec(ctx, `INSERT INTO spectrum (computation_id, tile_id, place, crc32c) VALUES (?, ?, ?, ?)`,
-		computationID, b.id, place, placeSeal(computationID, b.id, place)); err != nil {
+		computationID, b.id, place, new(sealer).row(computationID, b.id, place)); err != nil {
 		return fmt.Errorf("store spectrum: %w", err)
 	}
 	b.motions = append(b.motions, sd)

@@ -61,19 +61,18 @@ func (r *tileReader) forget() { r.tiles = nil }
 // read returns the spectra of a computation by damping; of one that has none, none.
 func (r *tileReader) read(ctx context.Context, computation int64) ([]storedSpectrum, error) {
 	l := location{computation: computation}
-	var p placing
 	var dampings, periods int
-	err := r.q.QueryRowContext(ctx, `SELECT s.tile_id, s.place, s.crc32c, coalesce(t.motions, 0),
+	err := r.q.QueryRowContext(ctx, `SELECT `+placeOfSpectra+`,
 			coalesce((SELECT max(d.position) + 1 FROM grid_damping d WHERE d.grid_id = g.grid_id), 0), coalesce((SELECT max(p.position) + 1 FROM grid_period p WHERE p.grid_id = g.grid_id), 0)
 		FROM spectrum s JOIN computation x ON x.id = s.computation_id JOIN generation g ON g.id = x.generation_id LEFT JOIN tile t ON t.id = s.tile_id
-		WHERE s.computation_id = ?`, computation).Scan(&p.tile, &p.place, &p.seal, &l.motions, &dampings, &periods)
+		WHERE s.computation_id = ?`, computation).Scan(&l.tile, &l.place, &l.motions, &dampings, &periods)
 	if errors.Is(err, sql.ErrNoRows) {
 		return nil, nil
 	}
 	if err != nil {
 		return nil, fmt.Errorf("read spectra: %w", err)
 	}
-	return r.at(ctx, p.of(l), min(max(dampings, 0), mostDampings), min(max(periods, 0), mostPeriods))
+	return r.at(ctx, l, min(max(dampings, 0), mostDampings), min(max(periods, 0), mostPeriods))
 }
 
 // at returns the spectra of a motion in a tile, which has so many dampings and periods.
