@@ -243,30 +243,36 @@ func (a *attributedFlags) check() error {
 
 // measures are those of the generation but for the peaks.
 func (s *Snapshot) measures(ctx context.Context) (map[roleOf]map[string]float64, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, x.name, x.value`+s.ofComputed("measure")+` WHERE x.name NOT IN `+peakNames)
+	out := map[roleOf]map[string]float64{}
+	err := s.eachMeasure(ctx, s.attribution(sealedMeasures, anyRole), `x.name NOT IN `+peakNames, func(of roleOf, name string, value float64) {
+		if out[of] == nil {
+			out[of] = map[string]float64{}
+		}
+		out[of][name] = value
+	})
+	return out, err
+}
+
+// eachMeasure calls f with the measures that meet a condition.
+func (s *Snapshot) eachMeasure(ctx context.Context, seen *attribution, condition string, f func(of roleOf, name string, value float64), args ...any) error {
+	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, x.name, x.value`+s.ofComputed("measure")+` WHERE `+condition, args...)
 	if err != nil {
-		return nil, fmt.Errorf("read measures: %w", err)
+		return fmt.Errorf("read measures: %w", err)
 	}
 	defer rows.Close()
-	out, seen := map[roleOf]map[string]float64{}, s.attribution(sealedMeasures, anyRole)
-	var of, last roleOf
-	var m map[string]float64
+	var of roleOf
 	var computation int64
 	var name string
 	var value float64
 	into := []any{&of.record, &of.role, &computation, &name, &value}
 	for rows.Next() {
 		if err := rows.Scan(into...); err != nil {
-			return nil, s.unread("measure", err)
+			return s.unread("measure", err)
 		}
 		seen.measure(of, computation, name, value)
-		if of != last {
-			m, last = map[string]float64{}, of
-			out[of] = m
-		}
-		m[name] = value
+		f(of, name, value)
 	}
-	return out, s.unread("measure", errors.Join(rows.Err(), seen.check()))
+	return s.unread("measure", errors.Join(rows.Err(), seen.check()))
 }
 
 // RotatedPeaks returns the peaks that are stored under a role of RotD, by the
@@ -282,22 +288,8 @@ func (s *Snapshot) RotatedPeaks(ctx context.Context, role string) (map[int64]Pea
 
 // peaks are those of the roles that meet a condition, and are wanted.
 func (s *Snapshot) peaks(ctx context.Context, condition string, wants func(role string) bool, args ...any) (map[roleOf]Peaks, error) {
-	rows, err := s.tx.QueryContext(ctx, `SELECT k.record_id, k.role, k.computation_id, x.name, x.value`+s.ofComputed("measure")+` WHERE x.name IN `+peakNames+` AND `+condition, args...)
-	if err != nil {
-		return nil, fmt.Errorf("read peaks: %w", err)
-	}
-	defer rows.Close()
-	out, seen := map[roleOf]Peaks{}, s.attribution(sealedPeaks, wants)
-	var of roleOf
-	var computation int64
-	var name string
-	var value float64
-	into := []any{&of.record, &of.role, &computation, &name, &value}
-	for rows.Next() {
-		if err := rows.Scan(into...); err != nil {
-			return nil, s.unread("measure", err)
-		}
-		seen.measure(of, computation, name, value)
+	out := map[roleOf]Peaks{}
+	err := s.eachMeasure(ctx, s.attribution(sealedPeaks, wants), `x.name IN `+peakNames+` AND `+condition, func(of roleOf, name string, value float64) {
 		p, ok := out[of]
 		if !ok {
 			p = lostPeaks
@@ -311,8 +303,8 @@ func (s *Snapshot) peaks(ctx context.Context, condition string, wants func(role 
 			p.PGD = value
 		}
 		out[of] = p
-	}
-	return out, s.unread("measure", errors.Join(rows.Err(), seen.check()))
+	}, args...)
+	return out, err
 }
 
 // computations are those of a role by record, read once.

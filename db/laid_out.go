@@ -141,8 +141,11 @@ func readPieces(ctx context.Context, q queryer, edition int64, w wanted, f func(
 		if err := rows.Scan(&key.number, &key.title, &data, &seal); err != nil {
 			return err
 		}
-		p, err := unpackPiece(data)
-		if key.seal(data) != seal || err != nil || key.number != number || isLast {
+		p, err := piece{}, errPiece
+		if key.seal(data) == seal {
+			p, err = unpackPiece(data)
+		}
+		if err != nil || key.number != number || isLast {
 			return fmt.Errorf("%w: piece %d of %s of %s", errPiece, key.number, key.title, w.name)
 		}
 		for _, i := range titles[key.title] {

@@ -36,8 +36,13 @@ type Snapshot struct {
 
 // ofRows is the snapshot without what is laid out of its edition.
 func (s *Snapshot) ofRows() *Snapshot {
-	return &Snapshot{tx: s.tx, store: s.store, shown: s.shown, seals: s.seals, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}, places: map[string][]location{},
-		Edition: s.Edition, Generation: s.Generation}
+	v := newSnapshot(s.tx, s.Edition, s.shown)
+	v.store, v.seals, v.Generation = s.store, s.seals, s.Generation
+	return v
+}
+
+func newSnapshot(tx queryer, e Edition, shown tables) *Snapshot {
+	return &Snapshot{tx: tx, shown: shown, Edition: e, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}, places: map[string][]location{}}
 }
 
 // ErrEmpty says that nothing has been ingested into the store yet.
@@ -93,7 +98,7 @@ func snapshotOf(ctx context.Context, tx *sql.Tx, missing absent, condition strin
 	if err != nil {
 		return nil, fmt.Errorf("read edition: %w", err)
 	}
-	v := &Snapshot{tx: tx, shown: ofEdition(e.ID, e.ID == newest), Edition: e, isWhole: map[string]bool{}, computed: map[string]map[int64]int64{}, places: map[string][]location{}}
+	v := newSnapshot(tx, e, ofEdition(e.ID, e.ID == newest))
 	v.Generation, err = generation(ctx, tx, e.GenerationID)
 	return v, err
 }
