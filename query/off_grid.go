@@ -254,13 +254,10 @@ type part struct {
 func partsByRole(motions []motion) map[string][]part {
 	out := map[string][]part{}
 	for i := range motions {
-		m := &motions[i]
-		if m.isRotated() {
-			out[m.role] = append(out[m.role], part{recordID: m.members[0].RecordID, motion: i, isFirst: true})
-			continue
-		}
-		for k, c := range m.members {
-			out[c.Role] = append(out[c.Role], part{recordID: c.RecordID, motion: i, isFirst: k == 0})
+		isFirst := true
+		for s := range motions[i].stored() {
+			out[s.Role] = append(out[s.Role], part{recordID: s.RecordID, motion: i, isFirst: isFirst})
+			isFirst = false
 		}
 	}
 	for _, parts := range out {

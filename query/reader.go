@@ -3,6 +3,7 @@ package query
 import (
 	"context"
 	"fmt"
+	"iter"
 	"slices"
 
 	"swaybook/db"
@@ -67,16 +68,26 @@ func (r *reader) readAll(ctx context.Context, snapshot *db.Snapshot, position in
 	return lacking, nil
 }
 
+// stored yields the spectra of the store that the motion's is made of, one after another.
+func (m *motion) stored() iter.Seq[db.RoleSpectrum] {
+	return func(yield func(db.RoleSpectrum) bool) {
+		if m.isRotated() {
+			yield(db.RoleSpectrum{RecordID: m.members[0].RecordID, Role: m.role})
+			return
+		}
+		for _, c := range m.members {
+			if !yield(db.RoleSpectrum{RecordID: c.RecordID, Role: c.Role}) {
+				return
+			}
+		}
+	}
+}
+
 // wanted lists the spectra of all motions, and the motion that each is of.
 func (r *reader) wanted() (wanted []db.RoleSpectrum, of []int) {
 	for i := range r.motions {
-		m := &r.motions[i]
-		if m.isRotated() {
-			wanted, of = append(wanted, db.RoleSpectrum{RecordID: m.members[0].RecordID, Role: m.role}), append(of, i)
-			continue
-		}
-		for _, c := range m.members {
-			wanted, of = append(wanted, db.RoleSpectrum{RecordID: c.RecordID, Role: c.Role}), append(of, i)
+		for s := range r.motions[i].stored() {
+			wanted, of = append(wanted, s), append(of, i)
 		}
 	}
 	return wanted, of
