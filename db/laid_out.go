@@ -75,7 +75,8 @@ func (s *Snapshot) scanPieces(ctx context.Context, w wanted, f func() error) err
 	read := make(chan []piece, 1)
 	group.Go(func() error { // beside who uses them
 		defer close(read)
-		return readPieces(inner, s.tx, s.Edition.ID, w, func(columns []piece) error {
+		// The end of inner would interrupt what else is read by the same transaction.
+		return readPieces(ctx, s.tx, s.Edition.ID, w, func(columns []piece) error {
 			select {
 			case read <- columns:
 				return nil
