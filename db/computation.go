@@ -31,8 +31,8 @@ func (t *Tx) AddFailure(ctx context.Context, u Unsolved, generationID int64, rea
 	return t.setComputed(ctx, u.RecordID, u.Role, generationID, id)
 }
 
-// AddRotated stores what was computed of a record's horizontals over all
-// directions. Nothing of that may be stored: see IsUnrotated.
+// AddRotated stores what was computed of a record's horizontals over all directions, as far
+// as that is not stored: see IsUnrotated.
 func (t *Tx) AddRotated(ctx context.Context, recordID, generationID int64, rotd50, rotd100 Spectra) error {
 	if err := t.addComputed(ctx, pairInputs, recordID, RoleRotD50, generationID, rotd50); err != nil {
 		return err

@@ -85,10 +85,7 @@ func (i *Inspection) schema(ctx context.Context) error {
 var orphans = []struct{ table, query string }{
 	{"spectrum", `SELECT 'spectra of computation ' || computation_id || ', which is not there' FROM spectrum WHERE computation_id NOT IN (SELECT id FROM computation)`},
 	{"spectrum", `SELECT 'spectra of computation ' || x.id || ', which has failed' FROM computation x JOIN spectrum s ON s.computation_id = x.id WHERE x.failure IS NOT NULL`},
-	{"spectrum", `SELECT 'spectra of computation ' || s.computation_id || ' in tile ' || s.tile_id || ', which is not there' FROM spectrum s WHERE s.tile_id NOT IN (SELECT id FROM tile)`},
-	{"spectrum", `SELECT 'spectra of computation ' || s.computation_id || ' in place ' || s.place || ' of tile ' || s.tile_id || ', which has ' || t.motions FROM spectrum s JOIN tile t ON t.id = s.tile_id
-		WHERE s.place NOT BETWEEN 0 AND t.motions - 1`},
-	{"spectrum", `SELECT 'where the spectra of computation ' || computation_id || ' are is not what was stored; questions leave them out' FROM spectrum WHERE crc32c <> crc32c(computation_id, tile_id, place)`},
+	{"tile", `SELECT 'how many motions tile ' || id || ' has is not what was stored' FROM tile t WHERE NOT ` + isSealedTile},
 	{"tile", `SELECT 'tile ' || t.id || ' has spectra of no computation' FROM tile t WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.tile_id = t.id)`},
 	{"tile", `SELECT 'tile ' || s.tile_id || ' has spectra of several generations' FROM spectrum s JOIN computation x ON x.id = s.computation_id
 		GROUP BY s.tile_id HAVING min(x.generation_id) <> max(x.generation_id)`},

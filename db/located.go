@@ -14,9 +14,12 @@ const damagedTile = -1
 // Where the spectra of a row k, which has a computation, are: as a location has it, of rows s and
 // t that stand beside it.
 const (
-	placeOfSpectra = `CASE WHEN s.tile_id IS NULL THEN 0
-		WHEN s.crc32c = crc32c(s.computation_id, s.tile_id, s.place) AND s.place BETWEEN 0 AND coalesce(t.motions, 0) - 1 THEN s.tile_id
-		ELSE -1 END AS tile_id, coalesce(s.place, 0) AS place, coalesce(t.motions, 0) AS motions`
+	isSealedSpectrum = `s.crc32c = crc32c(s.computation_id, s.tile_id, s.place)`
+	isSealedTile     = `t.crc32c = crc32c(t.id, t.motions)`
+	isPlaced         = `(` + isSealedSpectrum + ` AND ` + isSealedTile + ` AND s.place BETWEEN 0 AND t.motions - 1)`
+
+	placeOfSpectra = `CASE WHEN s.tile_id IS NULL THEN 0 WHEN ` + isPlaced + ` THEN s.tile_id ELSE -1 END AS tile_id,
+		coalesce(s.place, 0) AS place, coalesce(t.motions, 0) AS motions`
 	besideComputed = ` LEFT JOIN spectrum s ON s.computation_id = k.computation_id LEFT JOIN tile t ON t.id = s.tile_id`
 )
 

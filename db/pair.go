@@ -28,27 +28,27 @@ type PairComponent struct {
 // Unrotated returns the pairs of the generation's records that lack what is
 // computed over all directions, in the order in which the records were stored.
 func (s *Store) Unrotated(ctx context.Context, generationID int64) ([]Pair, error) {
-	return unrotated(ctx, s.read, generationID, "")
+	return unrotated(ctx, s.read, generationID, 0, "")
 }
 
 // IsUnrotated reports whether the record still holds this very pair, and lacks
 // what is computed of it over all directions.
 func (t *Tx) IsUnrotated(ctx context.Context, generationID int64, p Pair) (bool, error) {
-	found, err := unrotated(ctx, t.tx, generationID, "AND r.id = ?", p.RecordID)
+	found, err := unrotated(ctx, t.tx, generationID, t.begun.id, "AND r.id = ?", p.RecordID)
 	return len(found) == 1 && found[0] == p, err
 }
 
-// unrotated looks for each record's rotated spectrum first, which is one step in
-// an index and all that there is to do in a store that is complete.
-func unrotated(ctx context.Context, q queryer, generationID int64, condition string, args ...any) ([]Pair, error) {
+// unrotated looks for what is computed of each pair, and whether its spectra are there, or in the
+// tile that is begun: what was lost is computed again.
+func unrotated(ctx context.Context, q queryer, generationID, begun int64, condition string, args ...any) ([]Pair, error) {
 	rows, err := q.QueryContext(ctx, `SELECT r.id, r.code,
 			a.id, a.step_s, a.samples, coalesce(a.azimuth_deg, 0), a.azimuth_deg IS NOT NULL, coalesce(a.start_at, ''),
 			b.id, b.step_s, b.samples, coalesce(b.azimuth_deg, 0), b.azimuth_deg IS NOT NULL, coalesce(b.start_at, '')
 		FROM record r
 		CROSS JOIN component a ON a.record_id = r.id AND a.role = '`+RoleH1+`'
 		CROSS JOIN component b ON b.record_id = r.id AND b.role = '`+RoleH2+`'
-		WHERE NOT EXISTS (SELECT 1 FROM computed k WHERE k.generation_id = ? AND k.role = '`+RoleRotD100+`' AND k.record_id = r.id) `+condition+`
-		ORDER BY r.id`, append([]any{generationID}, args...)...)
+		WHERE (SELECT count(*) FROM computed k WHERE k.generation_id = ? AND k.role IN ('`+RoleRotD50+`', '`+RoleRotD100+`') AND k.record_id = r.id AND `+hasSpectra+`) < 2 `+condition+`
+		ORDER BY r.id`, append([]any{generationID, begun}, args...)...)
 	if err != nil {
 		return nil, fmt.Errorf("find unrotated pairs: %w", err)
 	}

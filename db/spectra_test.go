@@ -225,14 +225,6 @@ func wholeH1(t *testing.T, s *Store) (damaged []int64) {
 	return damaged
 }
 
-// SQL and Go make the same checksum of where spectra are.
-func TestPlacesAreSealed(t *testing.T) {
-	s, _ := tiledStore(t, 40)
-	if n := count(t, s, `SELECT count(*) FROM spectrum WHERE crc32c <> crc32c(computation_id, tile_id, place)`); n != 0 {
-		t.Errorf("%d rows have another checksum", n)
-	}
-}
-
 // A tile has computations of one generation and one transaction.
 func TestTilesOfOneGeneration(t *testing.T) {
 	s, g := tiledStore(t, 3)
@@ -263,54 +255,6 @@ func TestTilesOfOneGeneration(t *testing.T) {
 	}
 	if got := len(tilesOf(t, s)); got != 4 {
 		t.Errorf("%d tiles after a transaction that was taken back, want 4", got)
-	}
-}
-
-// What a tile has lost is computed again, in a tile of its own, and the other goes when nobody has
-// spectra in it any more. What was put into the tile at hand is not taken for lost.
-func TestLostSpectraAreComputedAgain(t *testing.T) {
-	s, g := tiledStore(t, 5)
-	if _, err := s.write.ExecContext(t.Context(), `DELETE FROM tile_part WHERE id = 1 << 20`); err != nil {
-		t.Fatal(err)
-	}
-	lost, err := s.Unsolved(t.Context(), g.ID)
-	if err != nil || len(lost) != 10 {
-		t.Fatalf("%d components are unsolved, %v, want 10", len(lost), err)
-	}
-	solve := func(list []Unsolved) {
-		update(t, s, func(ctx context.Context, tx *Tx) (err error) {
-			for _, u := range list {
-				var sd [][]float64
-				for d := range tiledGrid.Dampings {
-					sd = append(sd, tiledSD(u.RecordID, u.Role, d, Span{0, 19}))
-				}
-				for _, want := range []bool{true, false} {
-					is, errIs := tx.IsUnsolved(ctx, g.ID, u)
-					if err = errors.Join(err, errIs); is != want {
-						t.Errorf("%s %s is unsolved: %v", u.Code, u.Role, is)
-					}
-					err = errors.Join(err, tx.AddSolved(ctx, u, g.ID, NewSpectra(sd, map[string]float64{MeasurePGA: 1}, nil)))
-				}
-			}
-			return err
-		})
-	}
-	solve(lost[:4])
-	if got := fmt.Sprint(tilesOf(t, s)); got != "[10 4]" {
-		t.Errorf("tiles of %s motions, want [10 4]", got)
-	}
-	solve(lost[4:])
-	if got := fmt.Sprint(tilesOf(t, s)); got != "[4 6]" {
-		t.Errorf("tiles of %s motions, want [4 6]", got)
-	}
-	if n := count(t, s, `SELECT count(*) FROM tile_part WHERE id < 2 << 20`); n != 0 {
-		t.Errorf("%d parts of the lost tile are left", n)
-	}
-	editionOf(t, s, true)
-	for id, sd := range spectraOf(t, s, RoleH2, 2, Span{0, 19}) {
-		if !slices.Equal(sd, tiledSD(id, RoleH2, 2, Span{0, 19})) {
-			t.Errorf("record %d: %v", id, sd)
-		}
 	}
 }
 

@@ -18,6 +18,7 @@ const (
 	partBits = 12 // of a part's id, for its number
 	tileBits = 20 // for number and damping
 
+	mostTiles    = 1 << 42 // a limit of ids, so that those of parts do not run over
 	mostDampings = 1 << (tileBits - partBits)
 	mostPeriods  = partPeriods << partBits
 )
@@ -77,8 +78,7 @@ func (t *Tx) placeSpectra(ctx context.Context, computationID, generationID int64
 		if err := t.writeTile(ctx); err != nil {
 			return err
 		}
-		// What was lost of other tables gives no number away twice.
-		id, err := t.idOf(ctx, `SELECT 1 + max((SELECT coalesce(max(id), 0) FROM tile), (SELECT coalesce(max(tile_id), 0) FROM spectrum), (SELECT coalesce(max(id), 0) FROM tile_part) >> ?)`, tileBits)
+		id, err := t.nextTile(ctx)
 		if err != nil {
 			return fmt.Errorf("begin tile: %w", err)
 		}
@@ -93,6 +93,17 @@ func (t *Tx) placeSpectra(ctx context.Context, computationID, generationID int64
 	return nil
 }
 
+// nextTile is the id of a tile to begin. What was lost of one table gives no id away twice, since
+// others have it; ids that no tile can have are damaged, and not counted.
+func (t *Tx) nextTile(ctx context.Context) (int64, error) {
+	id, err := t.idOf(ctx, `SELECT 1 + max((SELECT coalesce(max(id), 0) FROM tile WHERE id < ?1), (SELECT coalesce(max(tile_id), 0) FROM spectrum WHERE tile_id < ?1),
+		(SELECT coalesce(max(id), 0) FROM tile_part WHERE id < ?1 << ?2) >> ?2, 0)`, mostTiles, tileBits)
+	if err == nil && id >= mostTiles {
+		err = fmt.Errorf("%w: tile %d is the last that a store can have", ErrDamaged, id-1)
+	}
+	return id, err
+}
+
 // writeTile writes the tile that is begun, if one is.
 func (t *Tx) writeTile(ctx context.Context) error {
 	b := t.begun
@@ -100,7 +111,8 @@ func (t *Tx) writeTile(ctx context.Context) error {
 	if b.id == 0 {
 		return nil
 	}
-	if err := t.exec(ctx, `INSERT INTO tile (id, motions) VALUES (?, ?)`, b.id, len(b.motions)); err != nil {
+	motions := int64(len(b.motions))
+	if err := t.exec(ctx, `INSERT INTO tile (id, motions, crc32c) VALUES (?, ?, ?)`, b.id, motions, new(sealer).row(b.id, motions)); err != nil {
 		return fmt.Errorf("store tile: %w", err)
 	}
 	spectra := make([][]byte, len(b.motions))
@@ -120,17 +132,21 @@ func (t *Tx) writeTile(ctx context.Context) error {
 	return nil
 }
 
-// hasSpectra says of a row k of computed whether its spectra are stored: where its tile has its
-// first part, or is the one that a transaction has begun, of which there are none yet. What lacks
-// them is computed again.
-const hasSpectra = `EXISTS (SELECT 1 FROM spectrum s WHERE s.computation_id = k.computation_id AND
-	(s.tile_id = ? OR EXISTS (SELECT 1 FROM tile_part p WHERE p.id = s.tile_id << 20)))`
+// hasSpectra says of a row k of computed whether its spectra are stored: where its place in a tile
+// is what was stored, and the tile has its first part, or is the one that a transaction has begun,
+// of which there are neither row nor parts yet. What lacks them is computed again.
+const hasSpectra = `EXISTS (SELECT 1 FROM spectrum s LEFT JOIN tile t ON t.id = s.tile_id WHERE s.computation_id = k.computation_id AND
+	(s.tile_id = ? AND ` + isSealedSpectrum + ` OR ` + isPlaced + ` AND EXISTS (SELECT 1 FROM tile_part p WHERE p.id = s.tile_id << 20)))`
 
 // forgetSpectra removes spectra of computations, which ids lists, and tiles of which nothing is
-// left. What others have in the same tile keeps it whole.
+// left: those that they were in; any, where nobody knows where they were, or which tile it is. What
+// others have in the same tile keeps it whole.
 func (t *Tx) forgetSpectra(ctx context.Context, ids string) error {
 	var tiles string
-	err := t.tx.QueryRowContext(ctx, `SELECT json_group_array(DISTINCT s.tile_id) FROM json_each(?) k JOIN spectrum s ON s.computation_id = k.value`, ids).Scan(&tiles)
+	err := t.tx.QueryRowContext(ctx, `WITH forgotten (tile_id) AS MATERIALIZED (
+			SELECT DISTINCT iif(`+isSealedSpectrum+`, s.tile_id, NULL) FROM json_each(?) k LEFT JOIN spectrum s ON s.computation_id = k.value)
+		SELECT json_group_array(id) FROM (SELECT tile_id AS id FROM forgotten WHERE tile_id IS NOT NULL
+			UNION SELECT id FROM tile t WHERE EXISTS (SELECT 1 FROM forgotten WHERE tile_id IS NULL) OR NOT `+isSealedTile+`)`, ids).Scan(&tiles)
 	if err == nil {
 		err = t.exec(ctx, `DELETE FROM spectrum WHERE computation_id IN (SELECT value FROM json_each(?))`, ids)
 	}

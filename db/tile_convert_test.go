@@ -8,6 +8,18 @@ import (
 	"testing"
 )
 
+// migrated brings a store up to this migration.
+func migrated(t *testing.T, handle *sql.DB, last int) {
+	t.Helper()
+	all, err := steps()
+	for done := false; !done && err == nil; {
+		done, err = applyNext(t.Context(), handle, all[:last], AnySolver)
+	}
+	if err != nil {
+		t.Fatal(err)
+	}
+}
+
 // olderStore is a store of the last schema with a row a spectrum, of as many computations in each
 // of two generations, by turns, on grids of 19 and 3 periods.
 func olderStore(t *testing.T, computations int) (path string, handle *sql.DB) {
@@ -19,13 +31,7 @@ func olderStore(t *testing.T, computations int) (path string, handle *sql.DB) {
 	}
 	t.Cleanup(func() { handle.Close() })
 	handle.SetMaxOpenConns(1)
-	all, err := steps()
-	for i := 0; i < 22 && err == nil; i++ {
-		_, err = applyNext(t.Context(), handle, all[:i+1], AnySolver)
-	}
-	if err != nil {
-		t.Fatal(err)
-	}
+	migrated(t, handle, 22)
 	do := func(query string, args ...any) {
 		if _, err := handle.ExecContext(t.Context(), query, args...); err != nil {
 			t.Fatal(query, err)
@@ -118,5 +124,34 @@ func TestSpectraBecomeTiles(t *testing.T) {
 	}
 	if n, want := count(t, s, `SELECT count(*) FROM tile_part`), 2*(3*3+2*1); n != want {
 		t.Errorf("%d parts, want %d", n, want)
+	}
+}
+
+// Tiles get a checksum where their motions go with their parts; what is in others is lost.
+func TestTilesAreSealed(t *testing.T) {
+	_, handle := olderStore(t, 100)
+	migrated(t, handle, 24)
+	for _, damage := range []string{
+		`UPDATE tile SET motions = motions - 1 WHERE id = 1`,
+		`UPDATE tile SET motions = motions + (1 << 58) WHERE id = 2`,
+		`DELETE FROM tile_part WHERE id = 3 << 20`,
+	} {
+		if _, err := handle.ExecContext(t.Context(), damage); err != nil {
+			t.Fatal(damage, err)
+		}
+	}
+	if err := migrate(t.Context(), handle, AnySolver); err != nil {
+		t.Fatal(err)
+	}
+	s := &Store{read: handle}
+	for id, want := range []int{1: 0, 2: 0, 3: 0, 4: 1} {
+		if n := count(t, s, fmt.Sprintf(`SELECT count(*) FROM tile t WHERE id = %d AND %s`, id, isSealedTile)); n != want {
+			t.Errorf("tile %d: sealed %d times, want %d", id, n, want)
+		}
+	}
+	tiles := &tileReader{q: handle}
+	sd, err := tiles.whole(t.Context(), 200) // in tile 4
+	if want := encodeOrdinates(nil, tiledSD(200, RoleH1, 0, Span{0, 3})); err != nil || len(sd) != 2 || !slices.Equal(sd[0], want) {
+		t.Errorf("what is in a tile that is whole: %v, %v", sd, err)
 	}
 }
