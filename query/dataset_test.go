@@ -260,6 +260,9 @@ func TestDatasetsAreEqual(t *testing.T) {
 	first, _ := writeDataset(t, store, DatasetQuestion{Program: "program", Version: "1"})
 	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(1))
 	second, _ := writeDataset(t, store, DatasetQuestion{Program: "program", Version: "1"})
+	if a, b := partsOf(t, first), partsOf(t, second); !slices.Equal(a, b) {
+		t.Errorf("files %v and %v", a, b)
+	}
 	for _, path := range partsOf(t, first) {
 		a, errA := os.ReadFile(filepath.Join(first, path))
 		b, errB := os.ReadFile(filepath.Join(second, path))

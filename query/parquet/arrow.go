@@ -87,7 +87,10 @@ func (s *schemaBuilder) field(name, column string, node pq.Node) flatbuffers.UOf
 		}
 	}
 	kind, of := s.kind(node)
-	dictionary := s.dictionary(node)
+	dictionary := flatbuffers.UOffsetT(0)
+	if name == column { // not inside another, where some readers cannot make dictionaries of several groups
+		dictionary = s.dictionary(node)
+	}
 	metadata := s.metadata(column, node)
 	inside, text := s.vector(children), s.b.CreateString(name)
 	s.b.StartObject(7) // Field

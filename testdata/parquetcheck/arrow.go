@@ -97,7 +97,7 @@ func arrowCell(a arrow.Array, i int) (string, error) {
 	}
 	switch a := a.(type) {
 	case *array.String:
-		return a.Value(i), nil
+		return word(a.Value(i)), nil
 	case *array.Dictionary:
 		return arrowCell(a.Dictionary(), a.GetValueIndex(i))
 	case *array.Float64:
@@ -115,7 +115,7 @@ func arrowCell(a arrow.Array, i int) (string, error) {
 			}
 			of[f.Name] = cell
 		}
-		return finding(of["flag"], of["of"], of["words"]), nil
+		return finding(of), nil
 	case *array.List:
 		var words []string
 		from, to := a.ValueOffsets(i)
@@ -178,6 +178,9 @@ func checkFile(path string) error {
 				unit, end = u, e
 			}
 		}
+		if hasDictionaryInside(f.Type) {
+			errs = append(errs, fmt.Errorf("%s is a %s: not all readers take dictionaries inside other types", f.Name, f.Type))
+		}
 		got, _ := f.Metadata.GetValue("unit")
 		beside := own.FindValue("unit." + f.Name)
 		if got != unit || unit != "" && (beside == nil || *beside != unit) {
@@ -187,8 +190,16 @@ func checkFile(path string) error {
 	return errors.Join(errs...)
 }
 
+// hasDictionaryInside reports whether a type is made of others, of which one is a dictionary.
+func hasDictionaryInside(of arrow.DataType) bool {
+	nested, ok := of.(arrow.NestedType)
+	return ok && slices.ContainsFunc(nested.Fields(), func(f arrow.Field) bool {
+		return f.Type.ID() == arrow.DICTIONARY || hasDictionaryInside(f.Type)
+	})
+}
+
 // checkSkipping checks that who asks for one period may skip groups of rows by what the file
-// says of them, so there must be several, of 65,536 rows each.
+// says of them, so there must be several at a damping, of 65,536 rows each.
 func checkSkipping(dir string, all *table) error {
 	files, err := parts(dir, "ordinates")
 	if err != nil {
@@ -227,7 +238,10 @@ func checkSkipping(dir string, all *table) error {
 			return err
 		}
 	}
-	if wanted < 1 || wanted == groups {
+	switch {
+	case groups < 2:
+		return errors.New("the export is too small to tell whether readers can skip rows: it has one group at a damping")
+	case wanted < 1 || wanted == groups:
 		return fmt.Errorf("of %d groups of rows %d may hold one period", groups, wanted)
 	}
 	fmt.Printf("groups of rows: %d of %d may hold the shortest period\n", wanted, groups)

@@ -59,7 +59,7 @@ func cellOf(v any) (string, error) {
 	case nil:
 		return "", nil
 	case string:
-		return v, nil
+		return word(v), nil
 	case float64:
 		return number(v), nil
 	case int64:
@@ -67,10 +67,15 @@ func cellOf(v any) (string, error) {
 	case time.Time:
 		return moment(v), nil
 	case map[string]any:
-		flag, _ := v["flag"].(string)
-		of, _ := v["of"].(string)
-		words, _ := v["words"].(string)
-		return finding(flag, of, words), nil
+		of := map[string]string{}
+		for name, x := range v {
+			cell, err := cellOf(x)
+			if err != nil {
+				return "", err
+			}
+			of[name] = cell
+		}
+		return finding(of), nil
 	case []any:
 		var words []string
 		for _, x := range v {

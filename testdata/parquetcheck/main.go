@@ -2,15 +2,18 @@
 // writer, the Parquet reader of github.com/apache/arrow-go and DuckDB, and compares every value
 // with the CSV that the same store gives:
 //
-//	parquetcheck DIR ORDINATES.csv MEASURES.csv RECORDS.csv
+//	parquetcheck DIR ORDINATES.csv MEASURES.csv RECORDS.csv RECORDS.json
 //
 // A number in the CSV has the fewest digits that restore the double, so texts are equal where
-// bits are. Names that begin as a formula does would differ, since CSV has an apostrophe before
-// them. It is a module of its own: DuckDB needs a C++ compiler.
+// bits are; findings, of which the CSV has words only, are compared with the JSON. An empty cell
+// stands for null and for nothing else. Names that begin as a formula does would differ, since CSV
+// has an apostrophe before them. It is a module of its own: DuckDB needs a C++ compiler.
 package main
 
 import (
+	"cmp"
 	"encoding/csv"
+	"encoding/json"
 	"errors"
 	"fmt"
 	"os"
@@ -30,8 +33,8 @@ type table struct {
 type reader func(dir, name string, columns []string) (*table, error)
 
 func main() {
-	if len(os.Args) != 5 {
-		fmt.Fprintln(os.Stderr, "usage: parquetcheck DIR ORDINATES.csv MEASURES.csv RECORDS.csv")
+	if len(os.Args) != 6 {
+		fmt.Fprintln(os.Stderr, "usage: parquetcheck DIR ORDINATES.csv MEASURES.csv RECORDS.csv RECORDS.json")
 		os.Exit(2)
 	}
 	if err := run(os.Args[1], os.Args[2:]); err != nil {
@@ -44,13 +47,16 @@ func run(dir string, files []string) error {
 	var errs []error
 	for i, name := range []string{"ordinates", "measures", "records"} {
 		want, err := readCSV(files[i])
+		if err == nil && name == "records" {
+			err = want.takeFindings(files[3])
+		}
 		if err != nil {
 			return err
 		}
 		for by, read := range map[string]reader{"arrow-go": readArrow, "DuckDB": readDuckDB} {
 			got, err := read(dir, name, want.columns)
 			if err == nil {
-				err = compare(got, want)
+				err = cmp.Or(inOrder(got), compare(got, want))
 			}
 			if err != nil {
 				errs = append(errs, fmt.Errorf("%s by %s: %w", name, by, err))
@@ -82,6 +88,87 @@ func readCSV(file string) (*table, error) {
 		return nil, fmt.Errorf("%s holds no rows", file)
 	}
 	return &table{rows[0], rows[1:]}, nil
+}
+
+// takeFindings puts findings in the place of their words, by the JSON of the same rows.
+func (t *table) takeFindings(file string) error {
+	text, err := os.ReadFile(file)
+	if err != nil {
+		return err
+	}
+	var rows []struct {
+		Record, Component string
+		Quality           []struct {
+			Flag, Of     string
+			Value, Bound float64
+			Unit         *string
+			Words        string
+		}
+	}
+	if err := json.Unmarshal(text, &rows); err != nil {
+		return fmt.Errorf("%s: %w", file, err)
+	}
+	cells, n := map[[2]string]string{}, 0
+	for _, r := range rows {
+		var words []string
+		for _, f := range r.Quality {
+			unit := ""
+			if f.Unit != nil {
+				unit = word(*f.Unit)
+			}
+			words = append(words, finding(map[string]string{"flag": f.Flag, "of": f.Of, "value": number(f.Value), "bound": number(f.Bound), "unit": unit, "words": f.Words}))
+			n++
+		}
+		cells[[2]string{r.Record, r.Component}] = list(words)
+	}
+	if n == 0 || len(cells) != len(t.rows) {
+		return fmt.Errorf("%s has %d findings of %d rows, want some of %d", file, n, len(cells), len(t.rows))
+	}
+	record, component, quality := slices.Index(t.columns, "record"), slices.Index(t.columns, "component"), slices.Index(t.columns, "quality")
+	for _, row := range t.rows {
+		row[quality] = cells[[2]string{row[record], row[component]}]
+	}
+	return nil
+}
+
+// inOrder checks that rows come sorted by period, record and component, at each damping.
+func inOrder(t *table) error {
+	var columns []int
+	for _, name := range []string{"damping", "period_s", "record", "component"} {
+		if at := slices.Index(t.columns, name); at >= 0 {
+			columns = append(columns, at)
+		}
+	}
+	dampings := map[string]bool{}
+	for i := 1; i < len(t.rows); i++ {
+		a, b := t.rows[i-1], t.rows[i]
+		if t.columns[columns[0]] == "damping" && a[columns[0]] != b[columns[0]] {
+			if dampings[b[columns[0]]] {
+				return fmt.Errorf("rows of the damping %s stand in two places", b[columns[0]])
+			}
+			dampings[a[columns[0]]] = true
+			continue
+		}
+		if compareRows(a, b, t.columns, columns) >= 0 {
+			return fmt.Errorf("row %q stands before %q", a[:4], b[:4])
+		}
+	}
+	return nil
+}
+
+func compareRows(a, b, names []string, columns []int) int {
+	for _, at := range columns {
+		c := cmp.Compare(a[at], b[at])
+		if names[at] == "period_s" {
+			x, _ := strconv.ParseFloat(a[at], 64)
+			y, _ := strconv.ParseFloat(b[at], 64)
+			c = cmp.Compare(x, y)
+		}
+		if c != 0 {
+			return c
+		}
+	}
+	return 0
 }
 
 // compare compares tables, whatever the order of their rows.
@@ -136,17 +223,22 @@ func checkEvents(dir string, records *table) error {
 	return nil
 }
 
-// The cells of the CSV.
+// The cells of the CSV, but for findings.
 func number(x float64) string { return strconv.FormatFloat(x, 'g', -1, 64) }
 
 func moment(at time.Time) string { return at.UTC().Format(time.RFC3339Nano) }
 
-// finding is a finding's cell, of its columns flag, of and words.
-func finding(flag, of, words string) string {
-	if of == "conditioned" {
-		flag += " behind the recipe"
+// word is a text's cell: no text, which stands for what is not known, is another one.
+func word(text string) string {
+	if text == "" {
+		return `""`
 	}
-	return flag + ": " + words
+	return text
+}
+
+// finding is a finding with all of its columns.
+func finding(of map[string]string) string {
+	return fmt.Sprintf("%s (%s): %s beyond %s [%s], %s", of["flag"], of["of"], of["value"], of["bound"], of["unit"], of["words"])
 }
 
 func list(words []string) string { return strings.Join(words, "; ") }
