@@ -66,7 +66,9 @@ func (t *Tx) Current(ctx context.Context) (g Generation, ok bool, err error) {
 	if err != nil || e.GenerationID == 0 {
 		return g, false, err
 	}
-	g, err = generation(ctx, t.tx, e.GenerationID)
+	if g, err = generation(ctx, t.tx, e.GenerationID); err == nil {
+		err = g.isStored(ctx, t.tx) // or a run would take it for a new one, and compute by it
+	}
 	return g, true, err
 }
 
@@ -150,6 +152,22 @@ func generation(ctx context.Context, q queryer, id int64) (g Generation, err err
 	}
 	g.Grid, err = readGrid(ctx, q, gridID)
 	return g, err
+}
+
+// isStored says that a generation is not what was stored, if it is not: by the hashes of its
+// recipe and its grid.
+func (g Generation) isStored(ctx context.Context, q queryer) error {
+	var recipe, grid string
+	err := q.QueryRowContext(ctx, `SELECT r.hash, d.hash FROM generation g JOIN recipe r ON r.id = g.recipe_id JOIN grid d ON d.id = g.grid_id WHERE g.id = ?`, g.ID).Scan(&recipe, &grid)
+	switch {
+	case err != nil:
+		return fmt.Errorf("read generation: %w", err)
+	case g.Recipe.Hash() != recipe:
+		return fmt.Errorf("%w: recipe %s has another hash", ErrAltered, g.Recipe.Name)
+	case g.Grid.Hash() != grid:
+		return fmt.Errorf("%w: the grid has another hash", ErrAltered)
+	}
+	return nil
 }
 
 func readGrid(ctx context.Context, q queryer, id int64) (Grid, error) {

@@ -27,7 +27,7 @@ func (s *Store) Update(ctx context.Context, f func(*Tx) error) error {
 		return errReading
 	}
 	err := transact(ctx, s.write, f)
-	if codeOf(err) != 0 {
+	if codeOf(err) != 0 || errors.Is(err, ErrAltered) {
 		err = fmt.Errorf("write to store %s: %w", s.path, err)
 	}
 	return err
