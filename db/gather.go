@@ -38,6 +38,8 @@ type gathering struct {
 	part  *Part
 	// generation is of the store that takes.
 	generation int64
+	check      CheckIntake
+	looked     intakeSum // the shard's files that were looked at
 	done       Gathered
 	tell       func(done, total int)
 	steps      int
@@ -48,11 +50,12 @@ type gathering struct {
 // its files, their samples, and what was computed of its generation, which is the store's of
 // this number. What is there is left alone, so that a store that was stopped in the middle
 // goes on. tell is told after each batch how far it is. What is damaged is told by its
-// checksums: of samples that is an error, a computation is left behind.
-func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, tell func(done, total int)) (Gathered, error) {
-	g := &gathering{store: s, part: part, generation: generationID, tell: tell}
+// checksums, and what is lost of samples by check: of these that is an error, a computation is
+// left behind.
+func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, check CheckIntake, tell func(done, total int)) (Gathered, error) {
+	g := &gathering{store: s, part: part, generation: generationID, check: check, tell: tell}
 	err := g.count(ctx)
-	for _, step := range []func(context.Context) error{g.events, g.files, g.gone, g.computations, g.end} {
+	for _, step := range []func(context.Context) error{g.events, g.files, g.gone, g.compare, g.computations, g.end} {
 		if err == nil {
 			err = step(ctx)
 		}
@@ -102,8 +105,8 @@ func (t *Tx) noteChange(ctx context.Context) error {
 func (g *gathering) events(ctx context.Context) error {
 	var s sealedSaying
 	err := g.part.tx.QueryRowContext(ctx, `SELECT said, sha256 FROM intake_events WHERE shard = ?`, g.part.Number).Scan(&s.said, &s.sum)
-	if errors.Is(err, sql.ErrNoRows) {
-		return nil
+	if errors.Is(err, sql.ErrNoRows) { // which every run writes
+		return g.part.damaged("events of documents", fmt.Errorf("%w: there are none", ErrDamaged))
 	}
 	if err != nil {
 		return g.part.unread(ctx, err)
@@ -143,7 +146,7 @@ func (g *gathering) files(ctx context.Context) error {
 	return ahead(ctx, g.readFiles, func(batch filesComing) error {
 		return g.update(ctx, batch.looked, func(t *Tx) error {
 			for _, in := range batch.files {
-				if err := t.PutIntake(ctx, g.part.Number, in); err != nil {
+				if err := t.PutIntake(ctx, in); err != nil {
 					return err
 				}
 			}
@@ -173,6 +176,7 @@ func (g *gathering) readFiles(ctx context.Context, pass func(filesComing) error)
 		key = rows[len(rows)-1].key
 		batch := filesComing{looked: len(rows)}
 		for _, row := range rows {
+			g.looked.add(row.key)
 			same, err := idOf(ctx, g.store.read, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ? AND sha256 = ?`, row.key.Path, row.key.Member, g.part.Number, row.sum)
 			if err != nil {
 				return err
@@ -183,6 +187,9 @@ func (g *gathering) readFiles(ctx context.Context, pass func(filesComing) error)
 			in, err := g.part.intake(ctx, row)
 			if err != nil {
 				return err
+			}
+			if err := g.check(in); err != nil {
+				return g.part.damaged("samples of "+row.key.Path, err)
 			}
 			batch.files = append(batch.files, in)
 			if batch.bytes += in.size(); batch.bytes < gatherBytes {
@@ -210,7 +217,7 @@ func (in *Intake) size() int {
 
 // intake reads what reading made of a file.
 func (p *Part) intake(ctx context.Context, row intakeRow) (Intake, error) {
-	in := Intake{IntakeKey: row.key}
+	in := Intake{IntakeKey: row.key, Shard: p.Number}
 	s := sealedSaying{sum: row.sum}
 	if err := p.tx.QueryRowContext(ctx, `SELECT said FROM intake WHERE id = ?`, row.id).Scan(&s.said); err != nil {
 		return in, p.unread(ctx, err)
@@ -259,6 +266,37 @@ func ahead[T any](ctx context.Context, read func(context.Context, func(T) error)
 		return nil
 	})
 	return group.Wait()
+}
+
+// compare looks whether the store has of the shard's files what the shard has of them: in both
+// by the rows of the table, as they stand in it, since what was taken over was found by an index.
+func (g *gathering) compare(ctx context.Context) error {
+	want, err := intakeTally(ctx, g.part.tx, g.part.Number)
+	if err != nil {
+		return g.part.unread(ctx, err)
+	}
+	if want != g.looked {
+		return g.part.damaged("intake", fmt.Errorf("%w: there are %d files, and %d are found", ErrDamaged, want.rows, g.looked.rows))
+	}
+	got, err := intakeTally(ctx, g.store.read, g.part.Number)
+	if err == nil && got != want {
+		err = fmt.Errorf("%s: %w: of the intake of %d files there are %d; combine all shards into a new store", g.store.path, ErrDamaged, want.rows, got.rows)
+	}
+	return err
+}
+
+// intakeSum is how many rows there are of intake, with the sum of their keys' checksums.
+type intakeSum struct{ rows, sum int64 }
+
+func (s *intakeSum) add(k IntakeKey) {
+	s.rows++
+	s.sum += new(sealer).row(k.Path, int64(k.Member))
+}
+
+// intakeTally adds up the table of intake, without an index.
+func intakeTally(ctx context.Context, q queryer, shard int) (s intakeSum, err error) {
+	err = q.QueryRowContext(ctx, `SELECT count(*), coalesce(sum(crc32c(path, member)), 0) FROM intake NOT INDEXED WHERE shard = ?`, shard).Scan(&s.rows, &s.sum)
+	return s, err
 }
 
 func (g *gathering) end(ctx context.Context) error {

@@ -7,19 +7,19 @@ import (
 )
 
 // Intake compares what reading made of files, in shards and what is combined of them, with its
-// digests.
-func (i *Inspection) Intake(ctx context.Context) error {
+// digests, and asks check whether it has its samples.
+func (i *Inspection) Intake(ctx context.Context, check CheckIntake) error {
 	type row struct {
-		path, sum sql.RawBytes
-		shard     int
-		said      sql.RawBytes
+		shard                   int
+		path, said, sum, series sql.RawBytes
 	}
-	opened := func(v *row) error {
-		_, err := sealedSaying{v.said, v.sum}.open()
-		return err
-	}
-	err := look(ctx, i, "intake", `SELECT path, shard, said, sha256 FROM intake`, nil, func(v *row) []any { return []any{&v.path, &v.shard, &v.said, &v.sum} }, func(v *row) {
-		if opened(v) != nil {
+	err := look(ctx, i, "intake", `SELECT path, shard, said, sha256, `+seriesOfIntake+` FROM intake i`, nil, func(v *row) []any { return []any{&v.path, &v.shard, &v.said, &v.sum, &v.series} }, func(v *row) {
+		var in Intake
+		err := in.open(sealedSaying{v.said, v.sum}, v.series)
+		if err == nil {
+			err = check(in)
+		}
+		if err != nil {
 			i.found(Fault{Table: "intake", Text: fmt.Sprintf("shard %d, %s: not what was stored; to combine needs the shard again, or the file", v.shard, v.path)})
 		}
 	})
@@ -27,7 +27,7 @@ func (i *Inspection) Intake(ctx context.Context) error {
 		return err
 	}
 	return look(ctx, i, "intake_events", `SELECT shard, said, sha256 FROM intake_events`, nil, func(v *row) []any { return []any{&v.shard, &v.said, &v.sum} }, func(v *row) {
-		if opened(v) != nil {
+		if _, err := (sealedSaying{v.said, v.sum}).open(); err != nil {
 			i.found(Fault{Table: "intake_events", Text: fmt.Sprintf("shard %d: not what was stored; to combine needs the shard again", v.shard)})
 		}
 	})

@@ -3,6 +3,7 @@ package db
 import (
 	"context"
 	"crypto/sha256"
+	"encoding/json"
 	"fmt"
 )
 
@@ -16,29 +17,35 @@ type IntakeKey struct {
 // BeforeIntake precedes every key.
 var BeforeIntake = IntakeKey{Path: "", Member: -1}
 
-// Intake is what reading made of a file, as its reader wrote it down, with the samples of the
-// channels that it gave.
+// Intake is what a shard's reading made of a file, as its reader wrote it down, with the samples
+// of the channels that it gave.
 type Intake struct {
 	IntakeKey
+	Shard  int
 	Said   []byte
 	Series []IntakeSeries
 }
 
-// IntakeSeries are the samples of a channel, from EncodeSamples, by its place in the file.
+// IntakeSeries are the samples of a channel, from EncodeSamples, by its place in the file. Of
+// what is read back by IntakeAfter there is no data.
 type IntakeSeries struct {
 	Channel, Samples int
-	Data             []byte
 	Digest           string
+	Data             []byte
 }
 
+// CheckIntake says whether all samples are there of which what was said speaks; the error wraps
+// ErrDamaged. Who has written it down can tell.
+type CheckIntake func(Intake) error
+
 // PutIntake keeps what reading made of a file, in place of what a run before made of it.
-func (t *Tx) PutIntake(ctx context.Context, shard int, in Intake) error {
-	if err := t.ForgetIntake(ctx, shard, in.IntakeKey); err != nil {
+func (t *Tx) PutIntake(ctx context.Context, in Intake) error {
+	if err := t.ForgetIntake(ctx, in.Shard, in.IntakeKey); err != nil {
 		return err
 	}
 	sum := sha256.Sum256(in.Said)
 	id, err := t.insert(ctx, `INSERT INTO intake (shard, path, member, said, sha256) VALUES (?, ?, ?, ?, ?)`,
-		shard, in.Path, in.Member, encoder.EncodeAll(in.Said, nil), sum[:])
+		in.Shard, in.Path, in.Member, encoder.EncodeAll(in.Said, nil), sum[:])
 	if err != nil {
 		return fmt.Errorf("store intake of %s: %w", in.Path, err)
 	}
@@ -135,28 +142,43 @@ func (e *DamagedIntakeError) Error() string {
 
 func (e *DamagedIntakeError) Unwrap() error { return e.err }
 
+// Damaged is the error of what was lost of it.
+func (in Intake) Damaged(err error) error { return &DamagedIntakeError{in.Shard, in.IntakeKey, err} }
+
+// seriesOfIntake is a list, in JSON, of the samples of a row i of intake.
+const seriesOfIntake = `(SELECT json_group_array(json_object('Channel', n.channel, 'Samples', n.samples, 'Digest', s.sha256))
+	FROM intake_series n JOIN series s ON s.id = n.series_id WHERE n.intake_id = i.id)`
+
+// open takes in what was said and which samples there are, as they are stored.
+func (in *Intake) open(s sealedSaying, series []byte) (err error) {
+	if in.Said, err = s.open(); err == nil {
+		err = json.Unmarshal(series, &in.Series)
+	}
+	return err
+}
+
 // IntakeAfter returns what reading made of files, shard by shard, of so many files behind key,
 // in their order, all of a file together. The error is a *DamagedIntakeError where one is damaged.
 func (s *Store) IntakeAfter(ctx context.Context, key IntakeKey, files int) ([]Intake, error) {
 	rows, err := s.read.QueryContext(ctx, `WITH next AS (SELECT DISTINCT path, member FROM intake WHERE (path, member) > (?, ?) ORDER BY path, member LIMIT ?)
-		SELECT i.path, i.member, i.shard, i.said, i.sha256 FROM next n JOIN intake i ON i.path = n.path AND i.member = n.member ORDER BY i.path, i.member, i.shard`, key.Path, key.Member, files)
+		SELECT i.path, i.member, i.shard, i.said, i.sha256, `+seriesOfIntake+` FROM next n JOIN intake i ON i.path = n.path AND i.member = n.member ORDER BY i.path, i.member, i.shard`, key.Path, key.Member, files)
 	if err != nil {
 		return nil, fmt.Errorf("read intake: %w", explain(err))
 	}
 	type row struct {
-		key   IntakeKey
-		shard int
+		Intake
 		sealedSaying
+		series []byte
 	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.key.Path, &v.key.Member, &v.shard, &v.said, &v.sum} })
+	found, err := collect(rows, func(v *row) []any { return []any{&v.Path, &v.Member, &v.Shard, &v.said, &v.sum, &v.series} })
 	if err != nil {
 		return nil, fmt.Errorf("read intake: %w", explain(err))
 	}
 	out := make([]Intake, len(found))
 	for i, v := range found {
-		out[i].IntakeKey = v.key
-		if out[i].Said, err = v.open(); err != nil {
-			return nil, &DamagedIntakeError{v.shard, v.key, err}
+		out[i] = v.Intake
+		if err := out[i].open(v.sealedSaying, v.series); err != nil {
+			return nil, v.Damaged(err)
 		}
 	}
 	return out, nil

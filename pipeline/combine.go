@@ -14,7 +14,7 @@ import (
 // Combined is a store into which shards are combined; *db.Store is one.
 type Combined interface {
 	Store
-	Gather(ctx context.Context, part *db.Part, generationID int64, tell func(done, total int)) (db.Gathered, error)
+	Gather(ctx context.Context, part *db.Part, generationID int64, check db.CheckIntake, tell func(done, total int)) (db.Gathered, error)
 	IntakeAfter(ctx context.Context, key db.IntakeKey, files int) ([]db.Intake, error)
 	CountIntake(ctx context.Context, key db.IntakeKey) (upTo, all int, err error)
 	GatheredShards(ctx context.Context) ([]db.GatheredShard, error)
@@ -260,7 +260,7 @@ func (c *combining) checkStore(ctx context.Context, tx *db.Tx, held db.Shard) er
 // gather takes over the shards, one after the other.
 func (c *combining) gather(ctx context.Context) error {
 	for i, p := range c.parts {
-		got, err := c.store.Gather(ctx, p, c.run.generation.ID, func(done, total int) {
+		got, err := c.store.Gather(ctx, p, c.run.generation.ID, checkIntake, func(done, total int) {
 			c.opts.Gathered(GatherProgress{Part: i + 1, Parts: len(c.parts), Done: done, Total: total})
 		})
 		c.gathered.Add(got)
@@ -313,18 +313,17 @@ func (c *combining) replay(ctx context.Context) error {
 func (c *combining) replayFrom(ctx context.Context, key db.IntakeKey) error {
 	for {
 		found, err := c.store.IntakeAfter(ctx, key, replayFiles)
+		if err == nil && len(found) > 0 {
+			key = found[len(found)-1].IntakeKey
+			err = stage[[]db.Intake, result]{
+				workers: c.opts.Workers, clock: c.opts.Clock, process: replayed,
+				weigh: weightOf, store: c.storeBatch,
+			}.run(ctx, slices.Values(byFile(found)))
+		}
 		if damaged, ok := errors.AsType[*db.DamagedIntakeError](err); ok {
 			return c.forget(ctx, damaged)
 		}
 		if err != nil || len(found) == 0 {
-			return err
-		}
-		key = found[len(found)-1].IntakeKey
-		err = stage[[]db.Intake, result]{
-			workers: c.opts.Workers, clock: c.opts.Clock, process: replayed,
-			weigh: weightOf, store: c.storeBatch,
-		}.run(ctx, slices.Values(byFile(found)))
-		if err != nil {
 			return err
 		}
 	}
@@ -362,6 +361,9 @@ func replayed(ctx context.Context, parts []db.Intake) (result, error) {
 		res, err := resultOf(part.Said)
 		if err != nil {
 			return whole, fmt.Errorf("%s: %w", part.Path, err)
+		}
+		if err := checkSeries(&res, part.Series); err != nil {
+			return whole, part.Damaged(err)
 		}
 		if i > 0 && res.source.SHA256 != whole.source.SHA256 {
 			return whole, fmt.Errorf("%s: shards have different contents of it: run them again", part.Path)

@@ -3,6 +3,7 @@ package pipeline
 import (
 	"bytes"
 	"database/sql"
+	"errors"
 	"fmt"
 	"os"
 	"slices"
@@ -30,25 +31,50 @@ func TestDamagedIntakeIsTakenOverAgain(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	execute(t, store.Path(), `UPDATE intake SET said = CAST(said || x'00' AS BLOB) WHERE id = (SELECT max(id) FROM intake WHERE shard = 2)`)
-	if v := verify(t, store); len(v.Faults) != 1 || v.Faults[0].Table != "intake" {
-		t.Errorf("faults %v, want one of intake", v.Faults)
+	const last = `(SELECT max(id) FROM intake WHERE shard = 2)`
+	for _, damage := range []string{
+		`UPDATE intake SET said = CAST(said || x'00' AS BLOB) WHERE id = ` + last,
+		`DELETE FROM intake_series WHERE intake_id = ` + last,
+		`UPDATE intake_series SET channel = channel + 7 WHERE intake_id = ` + last,
+		`UPDATE intake_series SET samples = samples + 1 WHERE intake_id = ` + last,
+	} {
+		execute(t, store.Path(), damage)
+		if v := verify(t, store); !slices.ContainsFunc(v.Faults, func(f db.Fault) bool { return f.Table == "intake" && strings.HasPrefix(f.Text, "shard 2, ") }) {
+			t.Errorf("%s: faults %v, want one of intake", damage, v.Faults)
+		}
+		execute(t, store.Path(), `UPDATE shard SET state = 'changed'`)
+		if err := combined(shards...); err == nil || !strings.Contains(err.Error(), "it is forgotten: combine shard 2 of 2 again") {
+			t.Errorf("%s: %v", damage, err)
+		}
+		if shown, err := db.Digest(t.Context(), store.Path()); err != nil || shown != published {
+			t.Errorf("%s: something else is shown: %v", damage, err)
+		}
+		if err := combined(shards[0]); err == nil || !strings.Contains(err.Error(), "shard 2 of 2 was being taken over") {
+			t.Errorf("%s: without the shard: %v", damage, err)
+		}
+		if err := combined(shards...); err != nil {
+			t.Fatal(err)
+		}
+		if got := dump(t, store); !slices.Equal(got, want) {
+			t.Errorf("%s: another result", damage)
+		}
+		if v := verify(t, store); len(v.Faults) != 0 {
+			t.Errorf("%s: faults %v", damage, v.Faults)
+		}
 	}
-	execute(t, store.Path(), `UPDATE shard SET state = 'changed'`)
-	if err := combined(shards...); err == nil || !strings.Contains(err.Error(), "it is forgotten: combine shard 2 of 2 again") {
-		t.Errorf("damaged: %v", err)
-	}
-	if shown, err := db.Digest(t.Context(), store.Path()); err != nil || shown != published {
-		t.Errorf("something else is shown: %v", err)
-	}
-	if err := combined(shards[0]); err == nil || !strings.Contains(err.Error(), "shard 2 of 2 was being taken over") {
-		t.Errorf("without the shard: %v", err)
-	}
-	if err := combined(shards...); err != nil {
+}
+
+// What a store has lost of the files of a shard is not published as if the shard had lost it.
+func TestLostIntakeIsTold(t *testing.T) {
+	opts := options(recordFiles(t, 6))
+	shards := shardsOf(t, 2, opts)
+	store := newStore(t)
+	if _, err := combineInto(t.Context(), t, store, shards, opts); err != nil {
 		t.Fatal(err)
 	}
-	if got := dump(t, store); !slices.Equal(got, want) {
-		t.Error("another result")
+	execute(t, store.Path(), `UPDATE intake SET shard = 1 WHERE id = (SELECT max(id) FROM intake WHERE shard = 2)`)
+	if _, err := combineInto(t.Context(), t, store, shards, opts); err != nil {
+		t.Errorf("a row that is of another shard is gone there, and comes here: %v", err)
 	}
 	if v := verify(t, store); len(v.Faults) != 0 {
 		t.Errorf("faults %v", v.Faults)
@@ -76,6 +102,11 @@ func TestDamagedShardIsNamed(t *testing.T) {
 		{"computation", func() { overwriteTable(t, shards[1], "computation") }},
 		{"spectrum", func() { overwriteTable(t, shards[1], "spectrum") }},
 		{"measure", func() { overwriteTable(t, shards[1], "measure") }},
+		{"samples of a file", func() {
+			execute(t, shards[1], "DELETE FROM intake_series WHERE intake_id = (SELECT max(id) FROM intake)")
+		}},
+		{"events", func() { execute(t, shards[1], "DELETE FROM intake_events") }},
+		{"a file that its index has lost", func() { loseLast(t, shards[1], "sqlite_autoindex_intake_1") }},
 		{"a row of samples", func() { execute(t, shards[1], "DELETE FROM series WHERE id = (SELECT max(id) FROM series)") }},
 	} {
 		if err := os.WriteFile(shards[1], whole, 0o666); err != nil {
@@ -83,7 +114,7 @@ func TestDamagedShardIsNamed(t *testing.T) {
 		}
 		damage.do()
 		_, err := combineInto(t.Context(), t, newStore(t), shards, opts)
-		for _, want := range []string{shards[1] + ": the file is damaged", "swaybook verify", "run shard 2 of 2 again"} {
+		for _, want := range []string{shards[1] + ": ", "damaged", "swaybook verify", "run shard 2 of 2 again"} {
 			if err == nil || !strings.Contains(err.Error(), want) {
 				t.Errorf("%s: %v, want %q in it", damage.name, err, want)
 			}
@@ -118,23 +149,44 @@ func TestDamagedStoreIsNoDamagedShard(t *testing.T) {
 // overwriteTable writes over the page of a table by which SQLite comes to its rows.
 func overwriteTable(t *testing.T, path, table string) {
 	t.Helper()
+	changePage(t, path, table, func(page []byte) { copy(page, bytes.Repeat([]byte{0xff}, len(page))) })
+}
+
+// loseLast takes the last entry out of an index of one page.
+func loseLast(t *testing.T, path, index string) {
+	t.Helper()
+	const leafOfIndex = 10 // a page's first byte; the number of its cells is in those from 3 on
+	changePage(t, path, index, func(page []byte) {
+		if page[0] != leafOfIndex || page[4] == 0 {
+			t.Fatalf("%s has more pages than one, or no entry", index)
+		}
+		page[4]--
+	})
+}
+
+// changePage changes the page by which SQLite comes to a table or an index.
+func changePage(t *testing.T, path, name string, change func(page []byte)) {
+	t.Helper()
 	raw, err := sql.Open("sqlite", "file:"+path+"?mode=ro")
 	if err != nil {
 		t.Fatal(err)
 	}
 	defer raw.Close()
-	var page, size int64
-	if err := raw.QueryRowContext(t.Context(), "SELECT rootpage, page_size FROM sqlite_schema, pragma_page_size WHERE name = ?", table).Scan(&page, &size); err != nil {
-		t.Fatal(fmt.Errorf("table %s: %w", table, err))
+	var number, size int64
+	if err := raw.QueryRowContext(t.Context(), "SELECT rootpage, page_size FROM sqlite_schema, pragma_page_size WHERE name = ?", name).Scan(&number, &size); err != nil {
+		t.Fatal(fmt.Errorf("%s: %w", name, err))
 	}
-	f, err := os.OpenFile(path, os.O_WRONLY, 0)
-	if err == nil {
-		_, err = f.WriteAt(bytes.Repeat([]byte{0xff}, int(size)), (page-1)*size)
-	}
-	if err == nil {
-		err = f.Close()
-	}
+	f, err := os.OpenFile(path, os.O_RDWR, 0)
 	if err != nil {
+		t.Fatal(err)
+	}
+	page := make([]byte, size)
+	_, err = f.ReadAt(page, (number-1)*size)
+	if err == nil {
+		change(page)
+		_, err = f.WriteAt(page, (number-1)*size)
+	}
+	if err := errors.Join(err, f.Close()); err != nil {
 		t.Fatal(err)
 	}
 }

@@ -6,6 +6,7 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"slices"
 
 	"swaybook/db"
 	"swaybook/ingest"
@@ -54,8 +55,8 @@ func causeOf(line int, cause error) saidCause {
 	return saidCause{Line: line, Text: cause.Error()}
 }
 
-// intakeOf is what is kept of a result, with the samples of its channels.
-func intakeOf(key db.IntakeKey, res result) (*db.Intake, error) {
+// intakeOf is what a shard keeps of a result, with the samples of its channels.
+func intakeOf(shard int, res result) (*db.Intake, error) {
 	said := saidFile{Rel: res.rel, Stem: res.stem, Source: res.source, Outcome: res.outcome, Reason: res.reason}
 	if res.err != nil {
 		said.Refused = append(said.Refused, causeOf(0, res.err))
@@ -63,7 +64,7 @@ func intakeOf(key db.IntakeKey, res result) (*db.Intake, error) {
 	for _, refusal := range res.refused {
 		said.Refused = append(said.Refused, causeOf(refusal.Line, refusal))
 	}
-	in := &db.Intake{IntakeKey: key}
+	in := &db.Intake{IntakeKey: res.key, Shard: shard}
 	for i := range res.channels {
 		s := &res.channels[i]
 		said.Channels = append(said.Channels, writtenDown(s))
@@ -108,6 +109,28 @@ func resultOf(said []byte) (res result, err error) {
 	return res, nil
 }
 
+// checkIntake is a db.CheckIntake.
+func checkIntake(in db.Intake) error {
+	res, err := resultOf(in.Said)
+	if err != nil {
+		return fmt.Errorf("%w: %w", db.ErrDamaged, err)
+	}
+	return checkSeries(&res, in.Series)
+}
+
+// checkSeries says whether a result's samples are among those that are kept with it.
+func checkSeries(res *result, kept []db.IntakeSeries) error {
+	for i := range res.channels {
+		c := &res.channels[i]
+		if !slices.ContainsFunc(kept, func(s db.IntakeSeries) bool {
+			return s.Channel == c.index && s.Samples == c.samples && s.Digest == c.digest
+		}) {
+			return fmt.Errorf("%w: the samples of channel %d are lost", db.ErrDamaged, c.index+1)
+		}
+	}
+	return nil
+}
+
 func (c *saidChannel) solved() solved {
 	s := solved{
 		index: c.Index, channel: c.Channel, stated: c.Stated, matched: c.Matched, quake: c.Quake, doubt: c.Doubt,
@@ -138,6 +161,6 @@ func (w *writer) keepIntake(ctx context.Context, tx *db.Tx, res result) error {
 	case res.intake == nil:
 		return tx.ForgetIntake(ctx, shard.Number, res.key)
 	default:
-		return tx.PutIntake(ctx, shard.Number, *res.intake)
+		return tx.PutIntake(ctx, *res.intake)
 	}
 }

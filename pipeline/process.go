@@ -140,7 +140,7 @@ func (r *reader) keep(res result) (result, error) {
 		return res, nil
 	}
 	var err error
-	res.intake, err = intakeOf(res.key, res)
+	res.intake, err = intakeOf(r.share.Number, res)
 	return res, err
 }
 

@@ -94,7 +94,8 @@ func (w *verifier) all(ctx context.Context) error {
 		records = viewRecordsAll
 	}
 	for _, check := range []func(context.Context) error{
-		w.Structure, w.Orphans, w.editions, w.Spectra, w.Seals, w.Intake, w.series,
+		w.Structure, w.Orphans, w.editions, w.Spectra, w.Seals,
+		func(ctx context.Context) error { return w.Intake(ctx, checkIntake) }, w.series,
 		func(ctx context.Context) (err error) { w.out.OffGrid, err = w.OffGrid(ctx); return err },
 		w.results,
 		func(ctx context.Context) (err error) { w.out.Ordinates, err = w.Ordinates(ctx, records); return err },

@@ -26,14 +26,7 @@ func damagedStore(t *testing.T) (path string) {
 	t.Helper()
 	path, _ = sealedStore(t)
 	did(t, path, exitDone, "query", "spectrum", "--periods", "0.3,0.7", "--damping", "5%")
-	// Pages that migrations have freed would be most of so small a file.
-	raw := openRaw(t, path)
-	defer raw.Close()
-	for _, text := range []string{"VACUUM", "PRAGMA wal_checkpoint(TRUNCATE)"} {
-		if _, err := raw.ExecContext(t.Context(), text); err != nil {
-			t.Fatal(err)
-		}
-	}
+	compact(t, path) // pages that migrations have freed would be most of so small a file
 	return path
 }
 
