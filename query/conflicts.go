@@ -162,7 +162,7 @@ func apartKM(a, b string) float64 {
 // Write renders the list. The error is a UsageError for an unknown format and
 // otherwise one of w.
 func (a *ConflictsAnswer) Write(w io.Writer, format Format) error {
-	return writeRows(w, "conflicts", format, a.Rows, a.table, a.csv)
+	return writeRows(w, "conflicts", format, a.Rows, a.table, conflictsHeader, (*ConflictRow).csv)
 }
 
 // rows is the table of the answer.
@@ -190,14 +190,10 @@ func fromWords(from string, file *string) string {
 	return from + " " + *file
 }
 
-func (a *ConflictsAnswer) csv() []byte {
-	var l csvLine
-	l.words("subject", "code", "attribute", "taken", "taken_from", "taken_file", "other", "other_from", "other_file")
+// conflictsHeader names the columns as the fields of JSON are named.
+var conflictsHeader = []string{"subject", "code", "attribute", "taken", "taken_from", "taken_file", "other", "other_from", "other_file"}
+
+func (r *ConflictRow) csv(l *csvLine) {
+	l.words(r.Subject, r.Code, r.Attribute, r.Taken, r.TakenFrom, orEmpty(r.TakenFile), r.Other, r.OtherFrom, orEmpty(r.OtherFile))
 	l.end()
-	for i := range a.Rows {
-		r := &a.Rows[i]
-		l.words(r.Subject, r.Code, r.Attribute, r.Taken, r.TakenFrom, orEmpty(r.TakenFile), r.Other, r.OtherFrom, orEmpty(r.OtherFile))
-		l.end()
-	}
-	return l.text
 }

@@ -111,6 +111,7 @@ func (q RecordsQuestion) Ask(ctx context.Context, store *db.Store) (*RecordsAnsw
 			return err
 		}
 		answer.Selection = picked.report
+		answer.Rows = make([]RecordRow, 0, len(picked.motions))
 		for i := range picked.motions {
 			answer.Rows = append(answer.Rows, rowOf(&picked.motions[i]))
 		}

@@ -115,25 +115,6 @@ func appendMarshalled(dst []byte, v any) ([]byte, error) {
 	return append(dst, bytes.TrimRight(b.Bytes(), "\n")...), nil
 }
 
-// jsonRows renders rows as an array with a line a row.
-func jsonRows[T any](rows []T) ([]byte, error) {
-	if len(rows) == 0 {
-		return []byte("[]\n"), nil
-	}
-	dst := []byte("[\n")
-	for i := range rows {
-		var err error
-		if dst, err = appendMarshalled(dst, &rows[i]); err != nil {
-			return dst, err
-		}
-		if i < len(rows)-1 {
-			dst = append(dst, ',')
-		}
-		dst = append(dst, '\n')
-	}
-	return append(dst, "]\n"...), nil
-}
-
 // object describes the selection.
 func (r *SelectionReport) object() object {
 	o := object{

@@ -11,27 +11,7 @@ import (
 // as a table. The error is a UsageError for an unknown format and otherwise one
 // of w.
 func (a *RecordsAnswer) Write(w io.Writer, format Format) error {
-	return writeRows(w, "records", format, a.Rows, a.table, a.csv)
-}
-
-// writeRows writes a list of rows in one of the formats.
-func writeRows[T any](w io.Writer, what string, format Format, rows []T, table, csv func() []byte) error {
-	var text []byte
-	var err error
-	switch format {
-	case FormatTable, "":
-		text = table()
-	case FormatCSV:
-		text = csv()
-	case FormatJSON:
-		text, err = jsonRows(rows)
-	default:
-		_, err = ParseFormat(string(format))
-	}
-	if err != nil {
-		return err
-	}
-	return writeText(w, what, text)
+	return writeRows(w, "records", format, a.Rows, a.table, recordsHeader, (*RecordRow).csv)
 }
 
 // rows is the table of the answer.
@@ -95,14 +75,13 @@ var recordsHeader = []string{
 	"unit", "processing", "low_cut_hz", "high_cut_hz", "usable_from_s", "usable_to_s", "format", "source", "line", "sha256", "warnings", "quality", "duplicate_of",
 }
 
-func (a *RecordsAnswer) csv() []byte {
-	var l csvLine
-	l.words(recordsHeader...)
-	l.end()
-	for i := range a.Rows {
-		a.Rows[i].csv(&l)
-	}
-	return l.text
+// csv is the list as one text, for few rows.
+func (a *RecordsAnswer) csv() (text []byte) {
+	_ = csvLines(a.Rows, recordsHeader, (*RecordRow).csv, func(line []byte) error { // which has no errors
+		text = append(text, line...)
+		return nil
+	})
+	return text
 }
 
 // csv writes the cells in the order of recordsHeader; an unknown is an empty
@@ -162,7 +141,7 @@ func (f *FindingRow) text() string {
 // Write renders the list. The error is a UsageError for an unknown format and
 // otherwise one of w.
 func (a *RejectionsAnswer) Write(w io.Writer, format Format) error {
-	return writeRows(w, "rejections", format, a.Rows, a.table, a.csv)
+	return writeRows(w, "rejections", format, a.Rows, a.table, []string{"source", "line", "cause", "sha256"}, (*RejectionRow).csv)
 }
 
 // rows is the table of the answer.
@@ -184,14 +163,7 @@ func (a *RejectionsAnswer) table() []byte {
 	return t.appendTo(nil)
 }
 
-func (a *RejectionsAnswer) csv() []byte {
-	var l csvLine
-	l.words("source", "line", "cause", "sha256")
+func (r *RejectionRow) csv(l *csvLine) {
+	l.words(r.Source, lineText(r.Line), r.Cause, orEmpty(r.SHA256))
 	l.end()
-	for i := range a.Rows {
-		r := &a.Rows[i]
-		l.words(r.Source, lineText(r.Line), r.Cause, orEmpty(r.SHA256))
-		l.end()
-	}
-	return l.text
 }

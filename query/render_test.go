@@ -212,12 +212,12 @@ func TestRecordsEmpty(t *testing.T) {
 // TestRecordsHeader: CSV and JSON name the same fields in one order.
 func TestRecordsHeader(t *testing.T) {
 	row := RecordRow{}
-	text, err := jsonRows([]RecordRow{row})
-	if err != nil {
+	var text bytes.Buffer
+	if err := (&RecordsAnswer{Rows: []RecordRow{row}}).Write(&text, FormatJSON); err != nil {
 		t.Fatal(err)
 	}
 	var fields []map[string]any
-	if err := json.Unmarshal(text, &fields); err != nil {
+	if err := json.Unmarshal(text.Bytes(), &fields); err != nil {
 		t.Fatal(err)
 	}
 	if len(fields[0]) != len(recordsHeader) {
