@@ -86,7 +86,7 @@ type digestedRole struct {
 	spectra     hash.Hash
 	dampings    int
 	failure     string
-	measures    []string
+	measures    []byte // a list; there are many
 }
 
 func (d *digester) role(recordID int64, role string) *digestedRole {
@@ -224,17 +224,21 @@ func (d *digester) measures(ctx context.Context) error {
 	if err != nil {
 		return err
 	}
-	type row struct {
-		id         int64
-		role, name string
-		value      float64
+	defer rows.Close()
+	var id int64
+	var role, name string
+	var value float64
+	for rows.Next() {
+		if err := rows.Scan(&id, &role, &name, &value); err != nil {
+			return err
+		}
+		r := d.role(id, role)
+		if len(r.measures) > 0 {
+			r.measures = append(r.measures, ", "...)
+		}
+		r.measures = append(append(append(r.measures, name...), ' '), exact(&value)...)
 	}
-	found, err := collect(rows, func(v *row) []any { return []any{&v.id, &v.role, &v.name, &v.value} })
-	for _, v := range found {
-		r := d.role(v.id, v.role)
-		r.measures = append(r.measures, v.name+" "+exact(&v.value))
-	}
-	return err
+	return rows.Err()
 }
 
 // statements reads who states what. Of several that state the same the store notes one, so
@@ -296,7 +300,7 @@ func (r *digestedRecord) digest(d *digester) string {
 			line("not computed")
 			continue
 		}
-		line("computed %q %d spectra %x measures %s", v.failure, v.dampings, v.spectra.Sum(nil), strings.Join(v.measures, ", "))
+		line("computed %q %d spectra %x measures %s", v.failure, v.dampings, v.spectra.Sum(nil), v.measures)
 	}
 	return hex.EncodeToString(sum.Sum(nil))
 }
