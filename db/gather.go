@@ -55,7 +55,7 @@ type gathering struct {
 func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, check CheckIntake, tell func(done, total int)) (Gathered, error) {
 	g := &gathering{store: s, part: part, generation: generationID, check: check, tell: tell}
 	err := g.count(ctx)
-	for _, step := range []func(context.Context) error{g.events, g.files, g.gone, g.compare, g.computations, g.end} {
+	for _, step := range []func(context.Context) error{g.events, g.files, g.allLooked, g.gone, g.allTaken, g.computations, g.end} {
 		if err == nil {
 			err = step(ctx)
 		}
@@ -268,9 +268,9 @@ func ahead[T any](ctx context.Context, read func(context.Context, func(T) error)
 	return group.Wait()
 }
 
-// compare looks whether the store has of the shard's files what the shard has of them: in both
-// by the rows of the table, as they stand in it, since what was taken over was found by an index.
-func (g *gathering) compare(ctx context.Context) error {
+// allLooked says whether all files of the shard were looked at, which an index has found: in the
+// table they stand without it.
+func (g *gathering) allLooked(ctx context.Context) error {
 	want, err := intakeTally(ctx, g.part.tx, g.part.Number)
 	if err != nil {
 		return g.part.unread(ctx, err)
@@ -278,9 +278,14 @@ func (g *gathering) compare(ctx context.Context) error {
 	if want != g.looked {
 		return g.part.damaged("intake", fmt.Errorf("%w: there are %d files, and %d are found", ErrDamaged, want.rows, g.looked.rows))
 	}
+	return nil
+}
+
+// allTaken says whether the store has these files, and no others.
+func (g *gathering) allTaken(ctx context.Context) error {
 	got, err := intakeTally(ctx, g.store.read, g.part.Number)
-	if err == nil && got != want {
-		err = fmt.Errorf("%s: %w: of the intake of %d files there are %d; combine all shards into a new store", g.store.path, ErrDamaged, want.rows, got.rows)
+	if err == nil && got != g.looked {
+		err = fmt.Errorf("%s: %w: of %d files of %s it has %d; swaybook verify tells whether the store is damaged, or the shard", g.store.path, ErrDamaged, g.looked.rows, g.part.Shard, got.rows)
 	}
 	return err
 }
