@@ -38,7 +38,6 @@ type gathering struct {
 	part  *Part
 	// generation is of the store that takes.
 	generation int64
-	check      CheckIntake
 	looked     intakeSum // the shard's files that were looked at
 	done       Gathered
 	tell       func(done, total int)
@@ -50,10 +49,10 @@ type gathering struct {
 // its files, their samples, and what was computed of its generation, which is the store's of
 // this number. What is there is left alone, so that a store that was stopped in the middle
 // goes on. tell is told after each batch how far it is. What is damaged is told by its
-// checksums, and what is lost of samples by check: of these that is an error, a computation is
-// left behind.
-func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, check CheckIntake, tell func(done, total int)) (Gathered, error) {
-	g := &gathering{store: s, part: part, generation: generationID, check: check, tell: tell}
+// checksums: of samples that is an error, a computation is left behind. Which samples a file has
+// to have only who reads what was said of it can tell; see Part.Check.
+func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, tell func(done, total int)) (Gathered, error) {
+	g := &gathering{store: s, part: part, generation: generationID, tell: tell}
 	err := g.count(ctx)
 	for _, step := range []func(context.Context) error{g.events, g.files, g.allLooked, g.gone, g.allTaken, g.computations, g.end} {
 		if err == nil {
@@ -188,9 +187,6 @@ func (g *gathering) readFiles(ctx context.Context, pass func(filesComing) error)
 			if err != nil {
 				return err
 			}
-			if err := g.check(in); err != nil {
-				return g.part.damaged("samples of "+row.key.Path, err)
-			}
 			batch.files = append(batch.files, in)
 			if batch.bytes += in.size(); batch.bytes < gatherBytes {
 				continue
@@ -240,6 +236,22 @@ func (p *Part) intake(ctx context.Context, row intakeRow) (Intake, error) {
 		}
 	}
 	return in, nil
+}
+
+// Check looks whether the shard has what check asks for of a file.
+func (p *Part) Check(ctx context.Context, key IntakeKey, check CheckIntake) error {
+	row := intakeRow{key: key}
+	if err := p.tx.QueryRowContext(ctx, `SELECT id, sha256 FROM intake WHERE path = ? AND member = ? AND shard = ?`, key.Path, key.Member, p.Number).Scan(&row.id, &row.sum); err != nil {
+		return p.unread(ctx, err)
+	}
+	in, err := p.intake(ctx, row)
+	if err != nil {
+		return err
+	}
+	if err := check(in); err != nil {
+		return p.damaged("samples of "+key.Path, err)
+	}
+	return nil
 }
 
 // ahead reads one batch while the one before is written.

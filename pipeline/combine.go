@@ -14,7 +14,7 @@ import (
 // Combined is a store into which shards are combined; *db.Store is one.
 type Combined interface {
 	Store
-	Gather(ctx context.Context, part *db.Part, generationID int64, check db.CheckIntake, tell func(done, total int)) (db.Gathered, error)
+	Gather(ctx context.Context, part *db.Part, generationID int64, tell func(done, total int)) (db.Gathered, error)
 	IntakeAfter(ctx context.Context, key db.IntakeKey, files int) ([]db.Intake, error)
 	CountIntake(ctx context.Context, key db.IntakeKey) (upTo, all int, err error)
 	GatheredShards(ctx context.Context) ([]db.GatheredShard, error)
@@ -260,7 +260,7 @@ func (c *combining) checkStore(ctx context.Context, tx *db.Tx, held db.Shard) er
 // gather takes over the shards, one after the other.
 func (c *combining) gather(ctx context.Context) error {
 	for i, p := range c.parts {
-		got, err := c.store.Gather(ctx, p, c.run.generation.ID, checkIntake, func(done, total int) {
+		got, err := c.store.Gather(ctx, p, c.run.generation.ID, func(done, total int) {
 			c.opts.Gathered(GatherProgress{Part: i + 1, Parts: len(c.parts), Done: done, Total: total})
 		})
 		c.gathered.Add(got)
@@ -339,6 +339,14 @@ func (c *combining) forget(ctx context.Context, damaged *db.DamagedIntakeError) 
 	})
 	if err != nil {
 		return errors.Join(damaged, err)
+	}
+	for _, p := range c.parts {
+		if p.Number != damaged.Shard {
+			continue
+		}
+		if err := p.Check(ctx, damaged.Key, checkIntake); err != nil { // it came so
+			return err
+		}
 	}
 	return fmt.Errorf("%w; it is forgotten: combine shard %d of %d again", damaged, damaged.Shard, c.count())
 }
