@@ -2,6 +2,7 @@ package db
 
 import (
 	"context"
+	"database/sql"
 	"errors"
 	"fmt"
 	"hash/crc32"
@@ -248,4 +249,35 @@ func (k pieceKey) seal(data []byte) int64 {
 	var b sealer
 	of := b.row(k.edition, k.name, k.part, int64(k.number), k.title)
 	return int64(crc32.Update(uint32(of), castagnoli, data))
+}
+
+// lastLaidOutTile is the greatest number of a tile in columns, 0 where there is none. What of them
+// is damaged nobody reads.
+func lastLaidOutTile(ctx context.Context, q queryer) (last int64, err error) {
+	rows, err := q.QueryContext(ctx, `SELECT edition_id, name, part, number, title, data, crc32c FROM edition_column WHERE name = 'computed' AND title = 'tile_id'`)
+	if err != nil {
+		return 0, err
+	}
+	defer rows.Close()
+	var key pieceKey
+	var data sql.RawBytes
+	var seal int64
+	for rows.Next() {
+		if err := rows.Scan(&key.edition, &key.name, &key.part, &key.number, &key.title, &data, &seal); err != nil {
+			return 0, err
+		}
+		if key.seal(data) != seal {
+			continue
+		}
+		p, err := unpackPiece(data)
+		if err != nil {
+			continue
+		}
+		for i := range p.rows {
+			if id, ok := p.value(i).(int64); ok {
+				last = max(last, id)
+			}
+		}
+	}
+	return last, rows.Err()
 }

@@ -139,7 +139,7 @@ func (t *Tx) pruneComputations(ctx context.Context, ids string, p *Pruned) error
 		JOIN generation g ON g.id = x.generation_id JOIN grid_damping d ON d.grid_id = g.grid_id`, ids)
 	if err == nil {
 		p.Spectra += int(spectra)
-		err = t.forgetSpectra(ctx, ids)
+		err = errors.Join(t.forgetSpectra(ctx, ids), t.dropTiles(ctx))
 	}
 	for _, from := range []struct {
 		n     *int

@@ -18,7 +18,6 @@ const (
 	partBits = 12 // of a part's id, for its number
 	tileBits = 20 // for number and damping
 
-	mostTiles    = 1 << 42 // a limit of ids, so that those of parts do not run over
 	mostDampings = 1 << (tileBits - partBits)
 	mostPeriods  = partPeriods << partBits
 )
@@ -93,15 +92,31 @@ func (t *Tx) placeSpectra(ctx context.Context, computationID, generationID int64
 	return nil
 }
 
-// nextTile is the id of a tile to begin. What was lost of one table gives no id away twice, since
-// others have it; ids that no tile can have are damaged, and not counted.
-func (t *Tx) nextTile(ctx context.Context) (int64, error) {
-	id, err := t.idOf(ctx, `SELECT 1 + max((SELECT coalesce(max(id), 0) FROM tile WHERE id < ?1), (SELECT coalesce(max(tile_id), 0) FROM spectrum WHERE tile_id < ?1),
-		(SELECT coalesce(max(id), 0) FROM tile_part WHERE id < ?1 << ?2) >> ?2, 0)`, mostTiles, tileBits)
-	if err == nil && id >= mostTiles {
-		err = fmt.Errorf("%w: tile %d is the last that a store can have", ErrDamaged, id-1)
+// nextTile is the id of a tile to begin: behind all that anybody speaks of, columns too, which may
+// be of before something was lost, and may be read meanwhile. Ids whose rows are damaged say
+// nothing, and are passed over.
+func (t *Tx) nextTile(ctx context.Context) (id int64, err error) {
+	for _, last := range []string{
+		`SELECT t.id FROM tile t WHERE ` + isSealedTile + ` ORDER BY t.id DESC LIMIT 1`,
+		`SELECT s.tile_id FROM spectrum s WHERE ` + isSealedSpectrum + ` ORDER BY s.tile_id DESC LIMIT 1`,
+	} {
+		n, err := t.idOf(ctx, last)
+		if err != nil {
+			return 0, err
+		}
+		id = max(id, n)
 	}
-	return id, err
+	laidOut, err := lastLaidOutTile(ctx, t.tx)
+	if err != nil {
+		return 0, err
+	}
+	for id = max(id, laidOut) + 1; ; id++ {
+		isUsed, err := t.idOf(ctx, `SELECT EXISTS (SELECT 1 FROM tile WHERE id = ?1) OR EXISTS (SELECT 1 FROM spectrum WHERE tile_id = ?1) OR
+			EXISTS (SELECT 1 FROM tile_part WHERE id BETWEEN ?1 << 20 AND (?1 << 20) + (1 << 20) - 1)`, id)
+		if err != nil || isUsed == 0 {
+			return id, err
+		}
+	}
 }
 
 // writeTile writes the tile that is begun, if one is.
@@ -138,28 +153,24 @@ func (t *Tx) writeTile(ctx context.Context) error {
 const hasSpectra = `EXISTS (SELECT 1 FROM spectrum s LEFT JOIN tile t ON t.id = s.tile_id WHERE s.computation_id = k.computation_id AND
 	(s.tile_id = ? AND ` + isSealedSpectrum + ` OR ` + isPlaced + ` AND EXISTS (SELECT 1 FROM tile_part p WHERE p.id = s.tile_id << 20)))`
 
-// forgetSpectra removes spectra of computations, which ids lists, and tiles of which nothing is
-// left: those that they were in; any, where nobody knows where they were, or which tile it is. What
-// others have in the same tile keeps it whole.
+// forgetSpectra removes from computations, which ids lists, where their spectra are. The tiles stay
+// until nobody asks for them: see dropTiles.
 func (t *Tx) forgetSpectra(ctx context.Context, ids string) error {
-	var tiles string
-	err := t.tx.QueryRowContext(ctx, `WITH forgotten (tile_id) AS MATERIALIZED (
-			SELECT DISTINCT iif(`+isSealedSpectrum+`, s.tile_id, NULL) FROM json_each(?) k LEFT JOIN spectrum s ON s.computation_id = k.value)
-		SELECT json_group_array(id) FROM (SELECT tile_id AS id FROM forgotten WHERE tile_id IS NOT NULL
-			UNION SELECT id FROM tile t WHERE EXISTS (SELECT 1 FROM forgotten WHERE tile_id IS NULL) OR NOT `+isSealedTile+`)`, ids).Scan(&tiles)
+	return t.exec(ctx, `DELETE FROM spectrum WHERE computation_id IN (SELECT value FROM json_each(?))`, ids)
+}
+
+// dropTiles removes tiles, and parts of tiles, in which nobody has spectra any more. What others
+// have in the same tile keeps it whole.
+func (t *Tx) dropTiles(ctx context.Context) error {
+	const nobodys = ` NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.tile_id = t.id)`
+	err := t.exec(ctx, `DELETE FROM tile_part WHERE id IN (
+		WITH RECURSIVE t (id) AS (SELECT min(id) >> 20 FROM tile_part UNION SELECT (SELECT min(id) >> 20 FROM tile_part WHERE id >= (t.id + 1) << 20) FROM t WHERE t.id IS NOT NULL)
+		SELECT p.id FROM t CROSS JOIN tile_part p ON p.id BETWEEN t.id << 20 AND (t.id << 20) + (1 << 20) - 1 WHERE t.id IS NOT NULL AND`+nobodys+`)`)
 	if err == nil {
-		err = t.exec(ctx, `DELETE FROM spectrum WHERE computation_id IN (SELECT value FROM json_each(?))`, ids)
+		err = t.exec(ctx, `DELETE FROM tile AS t WHERE`+nobodys)
 	}
-	if err == nil {
-		err = t.tx.QueryRowContext(ctx, `SELECT json_group_array(value) FROM json_each(?) k WHERE NOT EXISTS (SELECT 1 FROM spectrum s WHERE s.tile_id = k.value)`, tiles).Scan(&tiles)
+	if err != nil {
+		return fmt.Errorf("drop tiles: %w", err)
 	}
-	for _, statement := range []string{
-		`DELETE FROM tile WHERE id IN (SELECT value FROM json_each(?))`,
-		`DELETE FROM tile_part WHERE id IN (SELECT p.id FROM json_each(?) k CROSS JOIN tile_part p ON p.id BETWEEN k.value << 20 AND (k.value << 20) + (1 << 20) - 1)`,
-	} {
-		if err == nil {
-			err = t.exec(ctx, statement, tiles)
-		}
-	}
-	return err
+	return nil
 }

@@ -198,20 +198,49 @@ func TestBegunTilesAreNotLost(t *testing.T) {
 	}
 }
 
-// Only a store whose ids are used up, or damaged so that they seem to be, has no tile to begin.
-func TestIdsOfTilesEnd(t *testing.T) {
-	s, _ := tiledStore(t, 1)
-	for _, last := range []int64{mostTiles - 2, mostTiles - 1} {
-		if _, err := s.write.ExecContext(t.Context(), `UPDATE tile SET id = ? WHERE id > 0`, last); err != nil {
-			t.Fatal(err)
+// A tile gets no number that anybody speaks of: what is damaged aside, but columns too, which are
+// read until the run has ended.
+func TestNumbersOfTilesAreGivenOnce(t *testing.T) {
+	for damage, want := range map[string]int64{
+		``: 3,
+		`DELETE FROM spectrum; DELETE FROM tile; DELETE FROM tile_part`:                                    3,
+		`DELETE FROM edition_column; DELETE FROM tile; DELETE FROM tile_part`:                              3,
+		`DELETE FROM edition_column; DELETE FROM tile; DELETE FROM spectrum`:                               3,
+		`DELETE FROM edition_column; DELETE FROM tile_part; DELETE FROM tile; DELETE FROM spectrum`:        1,
+		`UPDATE tile SET id = 1 << 50 WHERE id = 2`:                                                        3,
+		`UPDATE spectrum SET tile_id = 1 << 50 WHERE computation_id = 2`:                                   3,
+		`UPDATE spectrum SET tile_id = 3 WHERE computation_id = 2`:                                         4,
+		`INSERT INTO tile_part SELECT 4398046511103 << 20, sd_m, crc32c FROM tile_part WHERE id = 1 << 20`: 3,
+	} {
+		s, _ := tiledStore(t, 40)
+		editionOf(t, s, true)
+		if _, err := s.write.ExecContext(t.Context(), damage); err != nil {
+			t.Fatal(damage, err)
 		}
-		err := s.Update(t.Context(), func(tx *Tx) error {
-			_, err := tx.nextTile(t.Context())
+		update(t, s, func(ctx context.Context, tx *Tx) error {
+			got, err := tx.nextTile(ctx)
+			if got != want {
+				t.Errorf("%s: tile %d, want %d", damage, got, want)
+			}
 			return err
 		})
-		if isLast := last == mostTiles-1; errors.Is(err, ErrDamaged) != isLast {
-			t.Errorf("behind tile %d: %v", last, err)
-		}
+	}
+}
+
+// A tile that has nobody's spectra goes, whatever its number, and no other.
+func TestTilesOfNobodyGo(t *testing.T) {
+	s, _ := tiledStore(t, 40)
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		return errors.Join(
+			tx.exec(ctx, `INSERT INTO tile (id, motions, crc32c) VALUES ((1 << 44) + 2, 1, 0), (77, 1, crc32c(77, 1))`),
+			tx.exec(ctx, `INSERT INTO tile_part SELECT x << 20, sd_m, p.crc32c FROM tile_part p, (SELECT 77 AS x UNION SELECT 4398046511103 UNION SELECT 8796093022207 UNION SELECT -3) WHERE id = 1 << 20`),
+			tx.dropTiles(ctx))
+	})
+	if got := fmt.Sprint(tilesOf(t, s)); got != "[63 17]" {
+		t.Errorf("tiles of %s motions, want [63 17]", got)
+	}
+	if n := count(t, s, `SELECT count(*) FROM tile_part`); n != 2*3*3 {
+		t.Errorf("%d parts, want 18", n)
 	}
 }
 

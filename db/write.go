@@ -38,7 +38,10 @@ func (t *Tx) finish(ctx context.Context) error {
 	if err := t.writeTile(ctx); err != nil || !t.hasEditions {
 		return err
 	}
-	return t.layOut(ctx) // tiles tell where spectra are
+	if err := t.layOut(ctx); err != nil { // tiles tell where spectra are
+		return err
+	}
+	return t.dropTiles(ctx) // of which no columns tell any more
 }
 
 func transact(ctx context.Context, write *sql.DB, f func(*Tx) error) (err error) {
