@@ -196,9 +196,7 @@ func (s *Snapshot) sealed(ctx context.Context) (err error) {
 	if s.seals, err = sealsOf(ctx, s.tx, s.Edition.ID); err != nil {
 		return err
 	}
-	g := &s.Generation
-	is := editionSeal{1, []int64{new(sealer).row(g.ID, g.Recipe.Name, g.Recipe.Hash(), g.Grid.Hash())}}
-	if err := s.isAsSealed(sealKey{name: sealedGeneration}, is); err != nil {
+	if err := s.isOfSealedGeneration(); err != nil {
 		return err
 	}
 	// Of an edition that has become another none of them knows.
@@ -212,6 +210,13 @@ func (s *Snapshot) sealed(ctx context.Context) (err error) {
 		s.isLaidOut, err = isLaidOut(ctx, s.tx, s.Edition.ID)
 	}
 	return err
+}
+
+// isOfSealedGeneration says whether the snapshot's generation is that which its edition was made of.
+func (s *Snapshot) isOfSealedGeneration() error {
+	g := &s.Generation
+	is := editionSeal{1, []int64{new(sealer).row(g.ID, g.Recipe.Name, g.Recipe.Hash(), g.Grid.Hash())}}
+	return s.isAsSealed(sealKey{name: sealedGeneration}, is)
 }
 
 // whole looks whether all that the edition shows of some tables is what it showed when it was

@@ -67,7 +67,7 @@ func (t *Tx) Current(ctx context.Context) (g Generation, ok bool, err error) {
 		return g, false, err
 	}
 	if g, err = generation(ctx, t.tx, e.GenerationID); err == nil {
-		err = g.isStored(ctx, t.tx) // or a run would take it for a new one, and compute by it
+		err = t.isStored(ctx, g, e.ID) // or a run would take it for a new one, and compute by it
 	}
 	return g, true, err
 }
@@ -77,6 +77,9 @@ func (t *Tx) Current(ctx context.Context) (g Generation, ok bool, err error) {
 func (t *Tx) PutGeneration(ctx context.Context, recipe Recipe, grid Grid, solver string) (Generation, error) {
 	g := Generation{Recipe: recipe, Solver: solver, Grid: grid}
 	recipeID, err := t.idOf(ctx, `SELECT id FROM recipe WHERE hash = ?`, recipe.Hash())
+	if err == nil { // what is there was damaged, if it is not that
+		err = t.exec(ctx, `UPDATE recipe SET steps = ?1 WHERE id = ?2 AND steps <> ?1`, recipe.Steps, recipeID)
+	}
 	if err == nil && recipeID == 0 {
 		recipeID, err = t.insert(ctx, `INSERT INTO recipe (hash, name, steps) VALUES (?, ?, ?)`, recipe.Hash(), recipe.Name, recipe.Steps)
 	}
@@ -155,17 +158,28 @@ func generation(ctx context.Context, q queryer, id int64) (g Generation, err err
 }
 
 // isStored says that a generation is not what was stored, if it is not: by the hashes of its
-// recipe and its grid.
-func (g Generation) isStored(ctx context.Context, q queryer) error {
+// recipe and its grid, and by the seal of an edition that shows it, 0 for none.
+func (t *Tx) isStored(ctx context.Context, g Generation, edition int64) error {
+	const instead = "; an earlier edition may be whole (swaybook runs publish), or a backup"
 	var recipe, grid string
-	err := q.QueryRowContext(ctx, `SELECT r.hash, d.hash FROM generation g JOIN recipe r ON r.id = g.recipe_id JOIN grid d ON d.id = g.grid_id WHERE g.id = ?`, g.ID).Scan(&recipe, &grid)
+	err := t.tx.QueryRowContext(ctx, `SELECT r.hash, d.hash FROM generation g JOIN recipe r ON r.id = g.recipe_id JOIN grid d ON d.id = g.grid_id WHERE g.id = ?`, g.ID).Scan(&recipe, &grid)
 	switch {
 	case err != nil:
 		return fmt.Errorf("read generation: %w", err)
 	case g.Recipe.Hash() != recipe:
-		return fmt.Errorf("%w: recipe %s has another hash", ErrAltered, g.Recipe.Name)
+		return fmt.Errorf("%w: recipe %s has another hash%s", ErrAltered, g.Recipe.Name, instead)
 	case g.Grid.Hash() != grid:
-		return fmt.Errorf("%w: the grid has another hash", ErrAltered)
+		return fmt.Errorf("%w: the grid has another hash%s", ErrAltered, instead)
+	case edition == 0:
+		return nil
+	}
+	seals, err := sealsOf(ctx, t.tx, edition)
+	if err != nil {
+		return err
+	}
+	s := Snapshot{tx: t.tx, Edition: Edition{ID: edition}, Generation: g, seals: seals}
+	if err := s.isOfSealedGeneration(); err != nil {
+		return fmt.Errorf("%w%s", err, instead)
 	}
 	return nil
 }

@@ -1,6 +1,7 @@
 package db
 
 import (
+	"context"
 	"errors"
 	"testing"
 )
@@ -37,4 +38,39 @@ func TestDamagedGenerationsAreRefused(t *testing.T) {
 			t.Errorf("%s: %+v", damage, got)
 		}
 	}
+}
+
+// Nor by another one that is whole.
+func TestGenerationOfAnEditionIsSealed(t *testing.T) {
+	s, g := tiledStore(t, 1)
+	editionOf(t, s, true)
+	changed(t, s, func(ctx context.Context, tx *Tx) error {
+		other, err := tx.PutGeneration(ctx, Recipe{Name: "other", Steps: `["other"]`}, testGrid, testSolver)
+		if err != nil {
+			return err
+		}
+		if now, _, err := tx.Current(ctx); err != nil || now.ID != g.ID {
+			t.Errorf("%+v, %v", now, err)
+		}
+		return tx.exec(ctx, `UPDATE generation SET recipe_id = (SELECT recipe_id FROM generation WHERE id = ?) WHERE id = ?`, other.ID, g.ID)
+	})
+	changed(t, s, func(ctx context.Context, tx *Tx) error {
+		if now, _, err := tx.Current(ctx); !errors.Is(err, ErrAltered) {
+			t.Errorf("%+v, %v", now, err)
+		}
+		return nil
+	})
+}
+
+// A recipe that a run brings mends the one that is stored.
+func TestPutGenerationMendsARecipe(t *testing.T) {
+	s, g := filledStore(t)
+	update(t, s, func(ctx context.Context, tx *Tx) error {
+		err := tx.exec(ctx, `UPDATE recipe SET steps = '["another"]'`)
+		again, errPut := tx.PutGeneration(ctx, g.Recipe, g.Grid, g.Solver)
+		if now, _, err := tx.Current(ctx); err != nil || now.Recipe != g.Recipe || again.ID != g.ID {
+			t.Errorf("%+v, %v", now, err)
+		}
+		return errors.Join(err, errPut)
+	})
 }
