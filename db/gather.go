@@ -54,7 +54,7 @@ type gathering struct {
 func (s *Store) Gather(ctx context.Context, part *Part, generationID int64, tell func(done, total int)) (Gathered, error) {
 	g := &gathering{store: s, part: part, generation: generationID, tell: tell}
 	err := g.count(ctx)
-	for _, step := range []func(context.Context) error{g.events, g.files, g.allLooked, g.gone, g.allTaken, g.computations, g.end} {
+	for _, step := range []func(context.Context) error{g.events, g.files, g.allLooked, g.gone, g.computations, g.end} {
 		if err == nil {
 			err = step(ctx)
 		}
@@ -125,19 +125,20 @@ func (g *gathering) events(ctx context.Context) error {
 
 // intakeRow is what a store keeps of a file, without what was said.
 type intakeRow struct {
-	id  int64
-	key IntakeKey
-	sum []byte
+	id     int64
+	key    IntakeKey
+	sum    []byte
+	series int
 }
 
 // intakeRows lists what a store keeps of files of a shard behind key.
 func intakeRows(ctx context.Context, q queryer, shard int, key IntakeKey) ([]intakeRow, error) {
-	rows, err := q.QueryContext(ctx, `SELECT id, path, member, sha256 FROM intake WHERE shard = ? AND (path, member) > (?, ?) ORDER BY path, member LIMIT ?`,
+	rows, err := q.QueryContext(ctx, `SELECT id, path, member, sha256, (SELECT count(*) FROM intake_series n WHERE n.intake_id = intake.id) FROM intake WHERE shard = ? AND (path, member) > (?, ?) ORDER BY path, member LIMIT ?`,
 		shard, key.Path, key.Member, gatherBatch)
 	if err != nil {
 		return nil, err
 	}
-	return collect(rows, func(r *intakeRow) []any { return []any{&r.id, &r.key.Path, &r.key.Member, &r.sum} })
+	return collect(rows, func(r *intakeRow) []any { return []any{&r.id, &r.key.Path, &r.key.Member, &r.sum, &r.series} })
 }
 
 // files takes over what reading made of files, and their samples.
@@ -176,7 +177,8 @@ func (g *gathering) readFiles(ctx context.Context, pass func(filesComing) error)
 		batch := filesComing{looked: len(rows)}
 		for _, row := range rows {
 			g.looked.add(row.key)
-			same, err := idOf(ctx, g.store.read, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ? AND sha256 = ?`, row.key.Path, row.key.Member, g.part.Number, row.sum)
+			same, err := idOf(ctx, g.store.read, `SELECT count(*) FROM intake WHERE path = ? AND member = ? AND shard = ? AND sha256 = ?
+				AND (SELECT count(*) FROM intake_series n WHERE n.intake_id = intake.id) = ?`, row.key.Path, row.key.Member, g.part.Number, row.sum, row.series)
 			if err != nil {
 				return err
 			}
@@ -222,7 +224,7 @@ func (p *Part) intake(ctx context.Context, row intakeRow) (Intake, error) {
 	if in.Said, err = s.open(); err != nil {
 		return in, p.damaged("intake of "+row.key.Path, err)
 	}
-	rows, err := p.tx.QueryContext(ctx, `SELECT i.channel, i.samples, s.sha256, s.data FROM intake_series i LEFT JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
+	rows, err := p.tx.QueryContext(ctx, `SELECT i.channel, i.samples, coalesce(s.sha256, ''), s.data FROM intake_series i LEFT JOIN series s ON s.id = i.series_id WHERE i.intake_id = ? ORDER BY i.channel`, row.id)
 	if err != nil {
 		return in, p.unread(ctx, err)
 	}
@@ -280,44 +282,28 @@ func ahead[T any](ctx context.Context, read func(context.Context, func(T) error)
 	return group.Wait()
 }
 
-// allLooked says whether all files of the shard were looked at, which an index has found: in the
-// table they stand without it.
+// allLooked says whether all files of the shard were looked at, which an index has found: as many
+// stand in the table without it, and as many were there when its last run had ended.
 func (g *gathering) allLooked(ctx context.Context) error {
-	want, err := intakeTally(ctx, g.part.tx, g.part.Number)
+	has, err := intakeSums(ctx, g.part.tx)
 	if err != nil {
 		return g.part.unread(ctx, err)
 	}
-	if want != g.looked {
-		return g.part.damaged("intake", fmt.Errorf("%w: there are %d files, and %d are found", ErrDamaged, want.rows, g.looked.rows))
+	noted, err := notedSums(ctx, g.part.tx)
+	if err != nil {
+		return g.part.unread(ctx, err)
+	}
+	want := noted[g.part.Number]
+	for _, is := range []intakeSum{has[g.part.Number], g.looked} {
+		if is != want {
+			return g.part.damaged("intake", fmt.Errorf("%w: of %d files there are %d", ErrDamaged, want.files, is.files))
+		}
 	}
 	return nil
 }
 
-// allTaken says whether the store has these files, and no others.
-func (g *gathering) allTaken(ctx context.Context) error {
-	got, err := intakeTally(ctx, g.store.read, g.part.Number)
-	if err == nil && got != g.looked {
-		err = fmt.Errorf("%s: %w: of %d files of %s it has %d; swaybook verify tells whether the store is damaged, or the shard", g.store.path, ErrDamaged, g.looked.rows, g.part.Shard, got.rows)
-	}
-	return err
-}
-
-// intakeSum is how many rows there are of intake, with the sum of their keys' checksums.
-type intakeSum struct{ rows, sum int64 }
-
-func (s *intakeSum) add(k IntakeKey) {
-	s.rows++
-	s.sum += new(sealer).row(k.Path, int64(k.Member))
-}
-
-// intakeTally adds up the table of intake, without an index.
-func intakeTally(ctx context.Context, q queryer, shard int) (s intakeSum, err error) {
-	err = q.QueryRowContext(ctx, `SELECT count(*), coalesce(sum(crc32c(path, member)), 0) FROM intake NOT INDEXED WHERE shard = ?`, shard).Scan(&s.rows, &s.sum)
-	return s, err
-}
-
 func (g *gathering) end(ctx context.Context) error {
-	return g.update(ctx, 0, func(t *Tx) error { return t.endGathering(ctx, g.part) })
+	return g.update(ctx, 0, func(t *Tx) error { return t.endGathering(ctx, g.part, g.looked) })
 }
 
 // gone forgets what the shard does not have any more.

@@ -147,8 +147,8 @@ func (t *Tx) BeginGathering(ctx context.Context, shard int) error {
 }
 
 // endGathering notes that what the store has of a shard is what the shard has.
-func (t *Tx) endGathering(ctx context.Context, p *Part) error {
-	return noted(t.exec(ctx, `UPDATE gathered SET is_whole = 1, sightings = ? WHERE shard = ?`, p.sightings, p.Number))
+func (t *Tx) endGathering(ctx context.Context, p *Part, s intakeSum) error {
+	return noted(t.exec(ctx, `UPDATE gathered SET is_whole = 1, sightings = ?, files = ?, keys = ? WHERE shard = ?`, p.sightings, s.files, s.keys, p.Number))
 }
 
 func noted(err error) error {

@@ -97,6 +97,9 @@ func (t *Tx) FinishRun(ctx context.Context, id int64, outcome string, counts any
 	err = t.exec(ctx, `UPDATE run SET outcome = ?1, counts = ?2, ended_at = ?3, edition_id = coalesce(
 		(SELECT id FROM edition WHERE id = ?4), (SELECT id FROM edition WHERE state = '`+EditionPublished+`')) WHERE id = ?4`,
 		outcome, string(text), timeText(at), id)
+	if err == nil && outcome == outcomeDone {
+		err = t.noteIntake(ctx)
+	}
 	if err != nil {
 		return fmt.Errorf("finish run: %w", err)
 	}

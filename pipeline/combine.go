@@ -268,7 +268,7 @@ func (c *combining) gather(ctx context.Context) error {
 			return err
 		}
 	}
-	return nil
+	return c.checkTaken(ctx)
 }
 
 // GatherProgress is how far a shard is taken over, by files and computations.
@@ -327,28 +327,6 @@ func (c *combining) replayFrom(ctx context.Context, key db.IntakeKey) error {
 			return err
 		}
 	}
-}
-
-// forget removes what is damaged, so that the next run takes it over again, and none goes on
-// without.
-func (c *combining) forget(ctx context.Context, damaged *db.DamagedIntakeError) error {
-	err := c.store.Update(ctx, func(tx *db.Tx) error {
-		return errors.Join(
-			tx.ForgetIntake(ctx, damaged.Shard, damaged.Key), tx.BeginGathering(ctx, damaged.Shard),
-			tx.SetRebuild(ctx, db.Rebuild{State: db.RebuildChanged, Reached: db.BeforeIntake}))
-	})
-	if err != nil {
-		return errors.Join(damaged, err)
-	}
-	for _, p := range c.parts {
-		if p.Number != damaged.Shard {
-			continue
-		}
-		if err := p.Check(ctx, damaged.Key, checkIntake); err != nil { // it came so
-			return err
-		}
-	}
-	return fmt.Errorf("%w; it is forgotten: combine shard %d of %d again", damaged, damaged.Shard, c.count())
 }
 
 // byFile are the parts of what was read of each file.

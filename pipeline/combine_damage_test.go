@@ -34,7 +34,6 @@ func TestDamagedIntakeIsTakenOverAgain(t *testing.T) {
 	const last = `(SELECT max(id) FROM intake WHERE shard = 2)`
 	for _, damage := range []string{
 		`UPDATE intake SET said = CAST(said || x'00' AS BLOB) WHERE id = ` + last,
-		`DELETE FROM intake_series WHERE intake_id = ` + last,
 		`UPDATE intake_series SET channel = channel + 7 WHERE intake_id = ` + last,
 		`UPDATE intake_series SET samples = samples + 1 WHERE intake_id = ` + last,
 	} {
@@ -64,20 +63,53 @@ func TestDamagedIntakeIsTakenOverAgain(t *testing.T) {
 	}
 }
 
-// What a store has lost of the files of a shard is not published as if the shard had lost it.
-func TestLostIntakeIsTold(t *testing.T) {
+// What a store has lost of the files of a shard, with all that tells of it, is missed: by verify, and
+// by a combination, which either has the shard and takes them over again, or asks for it.
+func TestLostIntakeIsMissed(t *testing.T) {
 	opts := options(recordFiles(t, 6))
 	shards := shardsOf(t, 2, opts)
 	store := newStore(t)
 	if _, err := combineInto(t.Context(), t, store, shards, opts); err != nil {
 		t.Fatal(err)
 	}
-	execute(t, store.Path(), `UPDATE intake SET shard = 1 WHERE id = (SELECT max(id) FROM intake WHERE shard = 2)`)
-	if _, err := combineInto(t.Context(), t, store, shards, opts); err != nil {
-		t.Errorf("a row that is of another shard is gone there, and comes here: %v", err)
-	}
-	if v := verify(t, store); len(v.Faults) != 0 {
-		t.Errorf("faults %v", v.Faults)
+	want := dump(t, store)
+	const first = `(SELECT min(id) FROM intake WHERE shard = 1)`
+	lost := `DELETE FROM intake_series WHERE intake_id = ` + first + `; DELETE FROM intake WHERE id = ` + first
+	for _, c := range []struct {
+		damage string
+		given  []string
+		asked  string // "" where the combination mends it
+	}{
+		{lost, shards, ""},
+		{lost, shards[1:], "the files of shards [1] of 2"},
+		{lost, shards[:1], ""},
+		{`DELETE FROM intake_series`, shards, ""},
+		{`UPDATE intake SET shard = 0 WHERE id = ` + first, shards, ""},
+		{`UPDATE intake SET shard = 99 WHERE id = ` + first, shards, ""},
+		{`UPDATE intake SET shard = 99 WHERE id = ` + first, shards[1:], "the files of shards [1] of 2"},
+		{`UPDATE intake SET shard = 2 WHERE id = ` + first, shards, ""},
+		{`UPDATE intake SET shard = 2 WHERE id = ` + first, shards[:1], "the files of shards [2] of 2"},
+		{`UPDATE intake SET path = path || 'x' WHERE id = ` + first, shards[1:], "the files of shards [1] of 2"},
+	} {
+		execute(t, store.Path(), strings.Split(c.damage, "; ")...)
+		if v := verify(t, store); !slices.ContainsFunc(v.Faults, func(f db.Fault) bool { return f.Table == "intake" }) {
+			t.Errorf("%s: faults %v, want one of intake", c.damage, v.Faults)
+		}
+		_, err := combineInto(t.Context(), t, store, c.given, opts)
+		if c.asked == "" && err != nil || c.asked != "" && (err == nil || !strings.Contains(err.Error(), c.asked)) {
+			t.Errorf("%s, combined with %v: %v", c.damage, c.given, err)
+		}
+		if err != nil {
+			if _, err := combineInto(t.Context(), t, store, shards, opts); err != nil {
+				t.Fatal(c.damage, err)
+			}
+		}
+		if got := dump(t, store); !slices.Equal(got, want) {
+			t.Errorf("%s: another result", c.damage)
+		}
+		if v := verify(t, store); len(v.Faults) != 0 {
+			t.Errorf("%s: faults %v", c.damage, v.Faults)
+		}
 	}
 }
 
@@ -105,6 +137,11 @@ func TestDamagedShardIsNamed(t *testing.T) {
 		{"samples of a file", func() {
 			execute(t, shards[1], "DELETE FROM intake_series WHERE intake_id = (SELECT max(id) FROM intake)")
 		}},
+		{"all files", func() { execute(t, shards[1], "DELETE FROM intake_series", "DELETE FROM intake") }},
+		{"a file", func() {
+			execute(t, shards[1], "DELETE FROM intake_series WHERE intake_id = (SELECT max(id) FROM intake)", "DELETE FROM intake WHERE id = (SELECT max(id) FROM intake)")
+		}},
+		{"a file of another shard", func() { execute(t, shards[1], "UPDATE intake SET shard = 1 WHERE id = (SELECT max(id) FROM intake)") }},
 		{"events", func() { execute(t, shards[1], "DELETE FROM intake_events") }},
 		{"a file that its index has lost", func() { loseLast(t, shards[1], "sqlite_autoindex_intake_1") }},
 		{"a row of samples", func() { execute(t, shards[1], "DELETE FROM series WHERE id = (SELECT max(id) FROM series)") }},
