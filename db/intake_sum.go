@@ -49,14 +49,9 @@ func sumsByShard(ctx context.Context, q queryer, query string) (map[int]intakeSu
 
 // noteIntake notes, in a shard, of how many files its intake is.
 func (t *Tx) noteIntake(ctx context.Context) error {
-	sums, err := intakeSums(ctx, t.tx)
+	err := t.exec(ctx, `UPDATE shard SET (files, keys) = (SELECT count(*), coalesce(sum(crc32c(i.path, i.member)), 0) FROM intake i NOT INDEXED WHERE i.shard = shard.number) WHERE number > 0`)
 	if err != nil {
-		return err
-	}
-	for number, s := range sums {
-		if err := t.exec(ctx, `UPDATE shard SET files = ?, keys = ? WHERE number = ? AND number > 0`, s.files, s.keys, number); err != nil {
-			return fmt.Errorf("note intake: %w", err)
-		}
+		return fmt.Errorf("note intake: %w", err)
 	}
 	return nil
 }
