@@ -1,6 +1,7 @@
 package query
 
 import (
+	"bytes"
 	"fmt"
 	"io"
 	"strconv"
@@ -76,12 +77,10 @@ var recordsHeader = []string{
 }
 
 // csv is the list as one text, for few rows.
-func (a *RecordsAnswer) csv() (text []byte) {
-	_ = csvLines(a.Rows, recordsHeader, (*RecordRow).csv, func(line []byte) error { // which has no errors
-		text = append(text, line...)
-		return nil
-	})
-	return text
+func (a *RecordsAnswer) csv() []byte {
+	var b bytes.Buffer // which has no errors
+	_ = csvLines(&b, a.Rows, recordsHeader, (*RecordRow).csv)
+	return b.Bytes()
 }
 
 // csv writes the cells in the order of recordsHeader; an unknown is an empty

@@ -9,25 +9,19 @@ import (
 // writeRows writes a list of rows in one of the formats. CSV and JSON have a line a row, and
 // are written some rows at a time: a list may have as many rows as the store has components.
 func writeRows[T any](w io.Writer, what string, format Format, rows []T, table func() []byte, header []string, line func(*T, *csvLine)) error {
+	out := bufio.NewWriterSize(w, 64<<10)
+	var err error
 	switch format {
 	case FormatTable, "":
 		return writeText(w, what, table())
 	case FormatCSV:
-		return writeLines(w, what, func(put func([]byte) error) error { return csvLines(rows, header, line, put) })
+		err = csvLines(out, rows, header, line)
 	case FormatJSON:
-		return writeLines(w, what, func(put func([]byte) error) error { return jsonLines(rows, put) })
-	}
-	_, err := ParseFormat(string(format))
-	return err
-}
-
-// writeLines writes what lines gives to put, one after the other.
-func writeLines(w io.Writer, what string, lines func(put func([]byte) error) error) error {
-	out := bufio.NewWriterSize(w, 64<<10)
-	err := lines(func(text []byte) error {
-		_, err := out.Write(text)
+		err = jsonLines(out, rows)
+	default:
+		_, err = ParseFormat(string(format))
 		return err
-	})
+	}
 	if err == nil {
 		err = out.Flush()
 	}
@@ -37,24 +31,26 @@ func writeLines(w io.Writer, what string, lines func(put func([]byte) error) err
 	return nil
 }
 
-func csvLines[T any](rows []T, header []string, line func(*T, *csvLine), put func([]byte) error) error {
+func csvLines[T any](w io.Writer, rows []T, header []string, line func(*T, *csvLine)) error {
 	var l csvLine
 	l.words(header...)
 	l.end()
 	for i := range rows {
-		if err := put(l.text); err != nil {
+		if _, err := w.Write(l.text); err != nil {
 			return err
 		}
 		l.text = l.text[:0]
 		line(&rows[i], &l)
 	}
-	return put(l.text)
+	_, err := w.Write(l.text)
+	return err
 }
 
-// jsonLines gives rows as an array with a line a row.
-func jsonLines[T any](rows []T, put func([]byte) error) error {
+// jsonLines writes rows as an array with a line a row.
+func jsonLines[T any](w io.Writer, rows []T) error {
 	if len(rows) == 0 {
-		return put([]byte("[]\n"))
+		_, err := io.WriteString(w, "[]\n")
+		return err
 	}
 	text := []byte("[\n")
 	for i := range rows {
@@ -65,10 +61,11 @@ func jsonLines[T any](rows []T, put func([]byte) error) error {
 		if i < len(rows)-1 {
 			text = append(text, ',')
 		}
-		if err := put(append(text, '\n')); err != nil {
+		if _, err := w.Write(append(text, '\n')); err != nil {
 			return err
 		}
 		text = text[:0]
 	}
-	return put([]byte("]\n"))
+	_, err := io.WriteString(w, "]\n")
+	return err
 }
