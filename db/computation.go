@@ -63,10 +63,8 @@ func (t *Tx) clearLost(ctx context.Context, id int64) (isLost bool, err error) {
 	if err != nil || found != 0 {
 		return false, err
 	}
-	if err := t.forgetSpectra(ctx, idList([]int64{id})); err != nil {
-		return false, fmt.Errorf("clear what was lost: %w", err)
-	}
-	for _, table := range []string{"conditioning", "conditioned_finding", "measure", "off_grid"} {
+	// Its tile stays until nobody asks for it: see dropTiles.
+	for _, table := range []string{"spectrum", "conditioning", "conditioned_finding", "measure", "off_grid"} {
 		if err := t.exec(ctx, `DELETE FROM `+table+` WHERE computation_id = ?`, id); err != nil {
 			return false, fmt.Errorf("clear what was lost: %w", err)
 		}

@@ -139,17 +139,19 @@ func (t *Tx) pruneComputations(ctx context.Context, ids string, p *Pruned) error
 		JOIN generation g ON g.id = x.generation_id JOIN grid_damping d ON d.grid_id = g.grid_id`, ids)
 	if err == nil {
 		p.Spectra += int(spectra)
-		err = errors.Join(t.forgetSpectra(ctx, ids), t.dropTiles(ctx))
 	}
 	for _, from := range []struct {
 		n     *int
 		table string
 	}{
-		{&uncounted, "measure"}, {&uncounted, "conditioning"}, {&uncounted, "conditioned_finding"}, {&uncounted, "computation_seal"}, {&p.OffGridRows, "off_grid"},
+		{&uncounted, "spectrum"}, {&uncounted, "measure"}, {&uncounted, "conditioning"}, {&uncounted, "conditioned_finding"}, {&uncounted, "computation_seal"}, {&p.OffGridRows, "off_grid"},
 	} {
 		if err == nil {
 			err = t.remove(ctx, from.n, from.table+` WHERE computation_id`+these, ids)
 		}
+	}
+	if err == nil {
+		err = t.dropTiles(ctx)
 	}
 	if err != nil {
 		return err

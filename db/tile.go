@@ -153,12 +153,6 @@ func (t *Tx) writeTile(ctx context.Context) error {
 const hasSpectra = `EXISTS (SELECT 1 FROM spectrum s LEFT JOIN tile t ON t.id = s.tile_id WHERE s.computation_id = k.computation_id AND
 	(s.tile_id = ? AND ` + isSealedSpectrum + ` OR ` + isPlaced + ` AND EXISTS (SELECT 1 FROM tile_part p WHERE p.id = s.tile_id << 20)))`
 
-// forgetSpectra removes from computations, which ids lists, where their spectra are. The tiles stay
-// until nobody asks for them: see dropTiles.
-func (t *Tx) forgetSpectra(ctx context.Context, ids string) error {
-	return t.exec(ctx, `DELETE FROM spectrum WHERE computation_id IN (SELECT value FROM json_each(?))`, ids)
-}
-
 // dropTiles removes tiles, and parts of tiles, in which nobody has spectra any more. What others
 // have in the same tile keeps it whole.
 func (t *Tx) dropTiles(ctx context.Context) error {
